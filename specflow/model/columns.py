@@ -1,0 +1,67 @@
+"""Conditions of many rows at once, as arrays: the form in which points and records are compared.
+
+Dimension names are canonical: ``frequency``, ``temperature_ambient``, ``theta`` ... (see ``conditions``).
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field
+
+import numpy as np
+from numpy.typing import NDArray
+
+UNSTATED = -1
+
+
+@dataclass(frozen=True, slots=True)
+class TextColumn:
+    """A column of words: ``codes`` (n,) int32 into ``labels``; -1 where the row states nothing."""
+
+    codes: NDArray[np.int32]
+    labels: tuple[str, ...]
+
+    @classmethod
+    def of(cls, words: Sequence[str | None]) -> TextColumn:
+        """Build a column from words; None and "" are unstated."""
+        labels: dict[str, int] = {}
+        codes = np.fromiter(
+            (labels.setdefault(word, len(labels)) if word else UNSTATED for word in words), np.int32, len(words)
+        )
+        return cls(codes, tuple(labels))
+
+    def word(self, row: int) -> str:
+        """Return the word of one row, "" where unstated."""
+        code = int(self.codes[row])
+        return "" if code == UNSTATED else self.labels[code]
+
+    def take(self, rows: NDArray[np.intp]) -> TextColumn:
+        """Return the rows asked for, in that order."""
+        return TextColumn(self.codes[rows], self.labels)
+
+
+@dataclass(frozen=True, slots=True)
+class Columns:
+    """Named columns of equal length.
+
+    ``numeric``: float64 (n,), NaN where unstated, in ``units[name]``; ``text``: words.
+    """
+
+    size: int
+    numeric: Mapping[str, NDArray[np.float64]] = field(default_factory=dict)
+    text: Mapping[str, TextColumn] = field(default_factory=dict)
+    units: Mapping[str, str] = field(default_factory=dict)
+
+    @property
+    def names(self) -> tuple[str, ...]:
+        """The dimensions stated by these columns."""
+        return (*self.numeric, *self.text)
+
+    def take(self, rows: NDArray[np.intp]) -> Columns:
+        """Return the rows asked for, in that order."""
+        return Columns(
+            len(rows),
+            {name: values[rows] for name, values in self.numeric.items()},
+            {name: column.take(rows) for name, column in self.text.items()},
+            self.units,
+        )

@@ -1,0 +1,233 @@
+"""Evidence: files received, the tables recorded from them, and what people decided about them.
+
+A table's values are never a document: they are column tables (``EvidenceColumns``), loaded only where they are
+judged. The document says what the columns mean and which rows they are.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from datetime import date
+from enum import StrEnum
+from typing import Literal
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.model.base import Code, Document
+from specflow.model.columns import Columns, TextColumn
+from specflow.model.origin import Origin
+from specflow.model.parameter import QuantityIdentity
+from specflow.model.requirement import Method, Stage
+
+
+class FileKind(StrEnum):
+    """What sort of document the evidence came in."""
+
+    MEASUREMENT = "measurement"
+    SIMULATION = "simulation"
+    DATASHEET = "datasheet"
+    REPORT = "report"
+    CERTIFICATE = "certificate"
+
+
+class EvidenceFile(Document):
+    """A file that was received; the id is given by the project, the hash says which bytes it was."""
+
+    id: Code
+    name: str
+    sha256: str
+    size: int
+    received_at: str
+    received_from: str = ""
+    kind: FileKind = FileKind.MEASUREMENT
+    document_number: str = ""
+    document_revision: str = ""
+    issue_date: date | None = None
+    authoriser: str = ""
+    importer_version: str = ""
+    note: str = ""
+    revision: int = 1
+
+
+class SpectrumKind(StrEnum):
+    """Whether a reading scales with bandwidth."""
+
+    NOISE_LIKE = "noise-like"
+    DISCRETE = "discrete"
+    UNKNOWN = "unknown"
+
+
+class ValueColumn(Document):
+    """A column of values of one quantity.
+
+    ``unit`` is the unit as recorded (values are kept as written); ``unit_from`` says where it was found.
+    ``uncertainty_from`` says where u came from: column, register line, mapping, or "" when there is none.
+    """
+
+    name: str
+    quantity: QuantityIdentity
+    unit: str
+    unit_from: str
+    column: int
+    header: str = ""
+    spectrum: SpectrumKind = SpectrumKind.UNKNOWN
+    uncertainty_from: str = ""
+    coverage_factor: float | None = None
+    conversions: tuple[str, ...] = ()
+
+
+class ConditionColumn(Document):
+    """A column (or a value stated once for the whole table) of one condition dimension."""
+
+    dimension: str
+    kind: Literal["numeric", "text"]
+    unit: str = ""
+    column: int | None = None
+    header: str = ""
+    stated_by: str = "column"
+
+
+class EvidenceTable(Document):
+    """One recorded table of one source file."""
+
+    id: Code
+    file: Code
+    sheet: str = ""
+    title: str = ""
+    block: Code
+    requirement: Code | None = None
+    method: Method = Method.TEST
+    stage: Stage = Stage.QUALIFICATION
+    rows: int
+    values: tuple[ValueColumn, ...]
+    conditions: tuple[ConditionColumn, ...] = ()
+    table_key: str = ""
+    digest: str = ""
+    mapping: Code | None = None
+    mapping_revision: int | None = None
+    set_up: str = ""
+    performer: str = ""
+    procedure: str = ""
+    procedure_revision: str = ""
+    performed_on: date | None = None
+    equipment: tuple[Equipment, ...] = ()
+    corrections: tuple[str, ...] = ()
+    simulation_model: str = ""
+    simulation_version: str = ""
+    simulation_validated: str = ""
+    hardware_note: str = ""
+    accepted_by: str = ""
+    accepted_at: str = ""
+    provisional: bool = False
+    left_out: tuple[LeftOut, ...] = ()
+    revision: int = 1
+
+
+class Equipment(Document):
+    """An instrument used, with the date its calibration runs out."""
+
+    asset: str
+    calibration_due: date | None = None
+
+
+class LeftOut(Document):
+    """A cell that was rejected at import and left out with the person's consent; it stays as a finding."""
+
+    sheet: str = ""
+    cell: str
+    text: str
+    reason: str
+
+
+class TableMapping(Document):
+    """How the columns of one layout are to be read; recognised again by the shape of the layout."""
+
+    id: Code
+    revision: int = 1
+    layout_key: str
+    title: str = ""
+    toml: str
+    origin: Origin | None = None
+
+
+class Supersession(Document):
+    """A correction or a retest: rows of one table that replace rows of another.
+
+    ``rows`` are the positions in the earlier table (None: all of it). ``names_fail`` holds the discrepancy report and
+    its disposition when failing rows are replaced; without it the fail stays open.
+    """
+
+    id: Code
+    earlier: Code
+    later: Code
+    rows: tuple[int, ...] | None = None
+    names_fail: str = ""
+    reason: str = ""
+    by: str = ""
+    at: str = ""
+    revision: int = 1
+
+
+class Withdrawal(Document):
+    """A record or table found wrong; it stays visible with the reason."""
+
+    id: Code
+    table: Code
+    rows: tuple[int, ...] | None = None
+    reason: str
+    by: str = ""
+    at: str = ""
+    revision: int = 1
+
+
+class ItemChange(Document):
+    """A change record of a block or an item: evidence of the named parameters before it is stale.
+
+    Empty ``parameters`` names every quantity. ``aspect`` says what changed (hardware, firmware, procedure, model,
+    calibration, declaration).
+    """
+
+    id: Code
+    block: Code
+    item: Code | None = None
+    aspect: Literal["hardware", "firmware", "procedure", "model", "calibration", "declaration"] = "hardware"
+    parameters: tuple[str, ...] = ()
+    effective: date
+    description: str
+    by: str = ""
+    revision: int = 1
+    origin: Origin | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class ValueArrays:
+    """Values of one column: a reading is the interval [low, high] (the same array when all are points).
+
+    ``low``, ``high``: float64 (n,), NaN where the cell is empty, ±inf at open ends, in the unit as recorded.
+    ``u``: standard uncertainty in the tolerance unit, float64 (n,) with NaN where none is known, or None.
+    """
+
+    low: NDArray[np.float64]
+    high: NDArray[np.float64]
+    u: NDArray[np.float64] | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class EvidenceColumns:
+    """The arrays of one evidence table; all have the table's number of rows.
+
+    ``source_rows`` int32: row numbers in the sheet; ``items``: item ids or serials as recorded;
+    ``dates``: ISO dates per row where a column gives them.
+    """
+
+    conditions: Columns
+    values: Mapping[str, ValueArrays]
+    source_rows: NDArray[np.int32]
+    items: TextColumn
+    dates: TextColumn | None = None
+    extra: Mapping[str, TextColumn] = field(default_factory=dict)
+
+
+EvidenceTable.model_rebuild()

@@ -1,0 +1,80 @@
+"""A report: a table as data, made once, so that every renderer shows the same figures with the same rounding."""
+
+from __future__ import annotations
+
+from enum import StrEnum
+
+from specflow.model.base import Document
+from specflow.model.origin import Origin
+
+
+class CellTone(StrEnum):
+    """What a cell says about the state of things; a renderer decides how to show it."""
+
+    PLAIN = ""
+    GOOD = "good"
+    DOUBTFUL = "doubtful"
+    BAD = "bad"
+    QUIET = "quiet"
+
+
+class Align(StrEnum):
+    """How a column is set."""
+
+    LEFT = "left"
+    RIGHT = "right"
+
+
+class ReportColumn(Document):
+    """A column: ``key`` for scripts, ``title`` for people, ``explains`` is the note under it."""
+
+    key: str
+    title: str
+    align: Align = Align.LEFT
+    width: int = 14
+    explains: str = ""
+
+
+class ReportCell(Document):
+    """A cell: the text shown (rounded once, here), the number behind it if there is one, and where it came from."""
+
+    text: str = ""
+    number: float | None = None
+    tone: CellTone = CellTone.PLAIN
+    origin: Origin | None = None
+    link: str = ""
+
+
+class ReportRow(Document):
+    """A row; ``id`` is what it is about (a requirement id, a finding), ``depth`` its place in a tree."""
+
+    id: str
+    cells: tuple[ReportCell, ...]
+    depth: int = 0
+
+
+class ReportTable(Document):
+    """One table of a report; ``rows`` have as many cells as there are columns."""
+
+    key: str
+    title: str
+    intro: str = ""
+    columns: tuple[ReportColumn, ...]
+    rows: tuple[ReportRow, ...]
+
+
+class Report(Document):
+    """Several tables under one title, with the facts that state what it was made from and the caution."""
+
+    title: str
+    subtitle: str = ""
+    facts: tuple[tuple[str, str], ...] = ()
+    cautions: tuple[str, ...] = ()
+    tables: tuple[ReportTable, ...] = ()
+
+    def table(self, key: str) -> ReportTable:
+        """Return one table by its key; KeyError when there is none."""
+        for table in self.tables:
+            if table.key == key:
+                return table
+        raise KeyError(key)
