@@ -1,0 +1,87 @@
+"""The card of one requirement: what the terminal, the page and the command line show of it, made once as data."""
+
+from __future__ import annotations
+
+from enum import StrEnum
+
+from specflow.model.base import Document
+from specflow.model.finding import Finding
+from specflow.model.origin import Origin
+from specflow.model.report import CellTone
+
+
+class PointState(StrEnum):
+    """What is known of one required point, as the proof grid shows it."""
+
+    PROVED = "proved"
+    DOUBTFUL = "doubtful"
+    FAILING = "failing"
+    MISSING = "missing"
+
+
+class MarginBar(Document):
+    """Limit, guard band and spread of results on one axis, in ``unit``; None where there is none."""
+
+    unit: str
+    lower: float | None = None
+    upper: float | None = None
+    guard: float = 0.0
+    least: float | None = None
+    greatest: float | None = None
+
+
+class ProofCell(Document):
+    """One required point: what it is in words, its state, and the value that governs it."""
+
+    words: str
+    state: PointState
+    value: str = ""
+    margin: str = ""
+
+
+class ProofGrid(Document):
+    """Required points as cells, in rows of ``row_titles`` and columns of ``column_titles`` where two dimensions
+    vary; otherwise one row. A cell is None where the combination is not required.
+    """
+
+    row_dimension: str = ""
+    column_dimension: str = ""
+    row_titles: tuple[str, ...] = ()
+    column_titles: tuple[str, ...] = ()
+    cells: tuple[tuple[ProofCell | None, ...], ...] = ()
+    note: str = ""
+
+
+class TrailStep(Document):
+    """One step of the trail: up to the system (``depth`` < 0), the item itself (0), down to the cell (> 0)."""
+
+    depth: int
+    kind: str
+    id: str = ""
+    text: str
+    tone: CellTone = CellTone.PLAIN
+    origin: Origin | None = None
+
+
+class Card(Document):
+    """Everything shown of one requirement.
+
+    ``facts`` are (name, value) pairs; ``cautions`` the sentences that radiated power or high power call for.
+    """
+
+    id: str
+    title: str
+    label: str
+    tone: CellTone
+    limit_words: str
+    limit_text: str
+    proved: str
+    k: int
+    n: int
+    facts: tuple[tuple[str, str], ...] = ()
+    bar: MarginBar | None = None
+    grid: ProofGrid | None = None
+    trail: tuple[TrailStep, ...] = ()
+    remarks: tuple[str, ...] = ()
+    findings: tuple[Finding, ...] = ()
+    cautions: tuple[str, ...] = ()
