@@ -1,0 +1,74 @@
+"""Options that several commands share, defined once."""
+
+from __future__ import annotations
+
+import os
+from datetime import date
+from pathlib import Path
+from typing import TYPE_CHECKING, Annotated
+
+import typer
+
+from specflow.errors import SpecflowError
+
+if TYPE_CHECKING:
+    from specflow.store import ProjectStore
+
+PROJECT_VARIABLE = "SPECFLOW_PROJECT"
+
+ProjectOption = Annotated[
+    str,
+    typer.Option(
+        "--project",
+        "-p",
+        help=f"The project: a .specflow file or a database URL. Default: ${PROJECT_VARIABLE}, else the only "
+        ".specflow file in this folder.",
+    ),
+]
+JsonOption = Annotated[bool, typer.Option("--json", help="Write JSON to stdout instead of a table.")]
+ByOption = Annotated[str, typer.Option("--by", help="Who decides; default: the name of this account.")]
+YesOption = Annotated[bool, typer.Option("--yes", "-y", help="Accept without asking.")]
+DryRunOption = Annotated[bool, typer.Option("--dry-run", help="Show what would happen; store nothing.")]
+TakeRestOption = Annotated[
+    bool,
+    typer.Option("--take-rest", help="Store what could be read although something was rejected."),
+]
+AsOfOption = Annotated[
+    str, typer.Option("--as-of", help="Judge as of this date (YYYY-MM-DD); default: today.", show_default=False)
+]
+
+
+def find_project(project: str) -> str:
+    """Return where the project is: the option, the variable, or the only .specflow file of this folder."""
+    chosen = project or os.environ.get(PROJECT_VARIABLE, "")
+    if chosen:
+        return chosen
+    found = sorted(path.name for path in Path.cwd().glob("*.specflow"))
+    if len(found) == 1:
+        return found[0]
+    if not found:
+        raise SpecflowError(
+            "there is no project in this folder",
+            where=str(Path.cwd()),
+            hint="specflow init NAME makes one; --project names one elsewhere; specflow demo shows an example",
+        )
+    raise SpecflowError(
+        f"there are {len(found)} projects in this folder: {', '.join(found)}", hint="choose one with --project"
+    )
+
+
+def open_store(project: str, *, read_only: bool = False) -> ProjectStore:
+    """Open the project that the option means."""
+    from specflow.store import open_project
+
+    return open_project(find_project(project), read_only=read_only)
+
+
+def judged_on(as_of: str) -> date:
+    """Return the date of judgement; today unless one is given."""
+    if not as_of:
+        return date.today()
+    try:
+        return date.fromisoformat(as_of)
+    except ValueError:
+        raise SpecflowError(f"{as_of!r} is not a date", hint="write it as YYYY-MM-DD") from None

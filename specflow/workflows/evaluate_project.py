@@ -1,0 +1,45 @@
+"""Compute everything that is derived: verdicts, status, findings. Nothing of it is stored."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from datetime import date
+from functools import cached_property
+
+from specflow.model.finding import Finding
+from specflow.model.parameter import Parameter
+from specflow.model.snapshot import Results, Snapshot
+from specflow.parameters import Dictionary, load_dictionary
+from specflow.store import ProjectStore
+from specflow.verification import evaluate
+
+
+@dataclass(frozen=True)
+class Evaluation:
+    """A snapshot with what was computed from it, as of one date. Findings are made when first asked for."""
+
+    snapshot: Snapshot
+    dictionary: Dictionary
+    results: Results
+    as_of: date
+
+    @cached_property
+    def findings(self) -> Sequence[Finding]:
+        """What the rules report, worst first."""
+        # Status does not need the rules; loading them only here keeps it quick.
+        from specflow.rules import run_rules
+
+        return run_rules(self.snapshot, self.results, self.dictionary)
+
+
+def evaluate_project(store: ProjectStore, as_of: date) -> Evaluation:
+    """Load the project and judge all of it."""
+    snapshot = store.load()
+    dictionary = project_dictionary(snapshot)
+    return Evaluation(snapshot, dictionary, evaluate(snapshot, dictionary, as_of=as_of), as_of)
+
+
+def project_dictionary(snapshot: Snapshot) -> Dictionary:
+    """Return the parameter dictionary with the project's own additions."""
+    return load_dictionary(snapshot.all(Parameter))

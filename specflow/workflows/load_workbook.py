@@ -1,0 +1,63 @@
+"""Load a workbook of requirements, blocks, conditions ... : preview what would change, then accept it."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from pathlib import Path
+
+from specflow.changes import diff
+from specflow.errors import DocumentError
+from specflow.importers.workbook import read_workbook
+from specflow.model.change import Change
+from specflow.model.finding import Finding, Severity
+from specflow.store import ProjectStore
+from specflow.workflows.evaluate_project import project_dictionary
+
+
+@dataclass(frozen=True)
+class LoadPreview:
+    """What accepting would change, what could not be read, and how limits and conditions were understood."""
+
+    path: Path
+    changes: Sequence[Change]
+    findings: Sequence[Finding]
+    echoes: Mapping[str, str]
+    unchanged: int
+    project_revision: int
+
+    @property
+    def rejected(self) -> Sequence[Finding]:
+        """The findings because of which something was not read."""
+        return [finding for finding in self.findings if finding.severity is Severity.ERROR]
+
+
+def preview_load(store: ProjectStore, path: Path) -> LoadPreview:
+    """Read the workbook and compare it with the project; nothing is stored."""
+    snapshot = store.load()
+    draft = read_workbook(path, snapshot, project_dictionary(snapshot))
+    changes = diff(snapshot, draft.documents)
+    return LoadPreview(
+        path,
+        changes,
+        draft.findings,
+        draft.echoes,
+        unchanged=len(draft.documents) - len(changes),
+        project_revision=snapshot.revision,
+    )
+
+
+def accept_load(store: ProjectStore, preview: LoadPreview, *, by: str, take_rest: bool = False) -> int:
+    """Store the changes in one transaction; return the new project revision.
+
+    Raises DocumentError when something was rejected and the person has not said to take the rest.
+    """
+    if preview.rejected and not take_rest:
+        raise DocumentError(
+            f"{len(preview.rejected)} rows or cells were rejected; nothing was stored",
+            where=str(preview.path),
+            hint="mend them in the workbook, or say --take-rest to store what could be read",
+        )
+    if not preview.changes:
+        return preview.project_revision
+    return store.apply(preview.changes, by=by, reason=f"loaded from {preview.path.name}")
