@@ -1,0 +1,291 @@
+"""The grid: what a reader gives for one sheet, with true addresses and the oddities a bare value does not show.
+
+Rows and columns are the 1-based coordinates of the sheet everywhere on the surface (``C17`` is row 17, column 3);
+for a csv file the row is the line number of the file. The cells themselves are plain Python values in plain lists,
+because a measurement workbook has a million of them.
+"""
+
+from __future__ import annotations
+
+import re
+from bisect import bisect_right
+from collections.abc import Iterable, Iterator, Sequence
+from dataclasses import dataclass, field
+from datetime import date, datetime, time, timedelta
+from enum import StrEnum
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.errors import FileError
+
+Value = str | float | int | bool | datetime | date | time | timedelta
+"""What a cell can hold; an empty cell is ``""``."""
+
+_NUMBER = re.compile(r"[+-]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][+-]?[0-9]+)?")
+_LOOKS_NUMERIC = re.compile(
+    r"[+\-−]?\s*[0-9.,'\s\u00a0\u202f]*[0-9][0-9.,'\s\u00a0\u202f]*(?:[eE][+\-−]?[0-9]+)?\s*%?"
+)
+
+
+class OddKind(StrEnum):
+    """Why a cell is not simply the number or text that it seems to be."""
+
+    PERCENT = "percent format"  # value 0.031 is shown as 3.1 %
+    SCALED = "scaled format"  # value 12000 is shown as 12
+    UNIT_FORMAT = "unit in the number format"  # value 45 is shown as 45 dBm, or as 45 €
+    DATE = "date or time"
+    ERROR = "error cell"  # the grid holds ""
+    NO_VALUE = "formula without a stored value"  # the grid holds "" or a placeholder 0
+    TEXT_NUMBER = "number stored as text"
+    HIDDEN = "hidden row or column"
+    MERGED = "part of a merged range"
+
+
+@dataclass(frozen=True, slots=True)
+class OddCell:
+    """One oddity of one cell; ``detail`` is the format code, the error text or the anchor, ``unit`` the text that
+    the number format writes beside the number."""
+
+    kind: OddKind
+    detail: str = ""
+    unit: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class OddRun:
+    """The same oddity in rows ``first`` to ``last`` (both included) of one column."""
+
+    column: int
+    first: int
+    last: int
+    cell: OddCell
+
+
+class OddCells:
+    """Odd cells of a sheet, kept as runs down a column: a percent-formatted column is one run, not 100,000 entries."""
+
+    __slots__ = ("_columns",)
+
+    def __init__(self, runs: Iterable[OddRun] = ()) -> None:
+        self._columns: dict[int, list[OddRun]] = {}
+        for run in sorted(runs, key=lambda run: (run.column, run.first)):
+            self._columns.setdefault(run.column, []).append(run)
+
+    def at(self, row: int, column: int) -> OddCell | None:
+        """The oddity of one cell, if it has one."""
+        runs = self._columns.get(column, [])
+        place = bisect_right(runs, row, key=lambda run: run.first) - 1
+        return runs[place].cell if place >= 0 and row <= runs[place].last else None
+
+    def in_column(self, column: int, start: int, stop: int) -> list[OddRun]:
+        """The runs of ``column`` that touch rows ``start`` up to, not including, ``stop``."""
+        return [run for run in self._columns.get(column, []) if run.first < stop and run.last >= start]
+
+    def __iter__(self) -> Iterator[OddRun]:
+        for runs in self._columns.values():
+            yield from runs
+
+    def __len__(self) -> int:
+        return sum(run.last - run.first + 1 for run in self)
+
+
+@dataclass(frozen=True, slots=True)
+class CellRange:
+    """A rectangle of cells, both corners included."""
+
+    first_row: int
+    first_column: int
+    last_row: int
+    last_column: int
+
+    def __contains__(self, cell: tuple[int, int]) -> bool:
+        return self.first_row <= cell[0] <= self.last_row and self.first_column <= cell[1] <= self.last_column
+
+    def __str__(self) -> str:
+        return f"{address(self.first_row, self.first_column)}:{address(self.last_row, self.last_column)}"
+
+
+@dataclass(frozen=True, slots=True)
+class Grid:
+    """One sheet of a workbook, or one csv file.
+
+    ``rows[0][0]`` is the cell at (``first_row``, ``first_column``); rows may be of unequal length. ``is_text`` says that
+    all cells are text as written (csv); ``decimal`` is then the decimal mark found, ``""`` when it is ambiguous.
+    ``comment_rows`` are csv lines that began with a comment mark, which is taken off. ``notes`` say what the reader
+    did or saw on the way.
+    """
+
+    name: str
+    rows: list[list[Value]]
+    file: str = ""
+    first_row: int = 1
+    first_column: int = 1
+    odd: OddCells = field(default_factory=OddCells)
+    hidden: bool = False
+    hidden_rows: frozenset[int] = frozenset()
+    hidden_columns: frozenset[int] = frozenset()
+    merged: tuple[CellRange, ...] = ()
+    comment_rows: frozenset[int] = frozenset()
+    is_text: bool = False
+    decimal: str = "."
+    notes: tuple[str, ...] = ()
+
+    @property
+    def last_row(self) -> int:
+        """Row number of the last row; ``first_row - 1`` when the grid is empty."""
+        return self.first_row + len(self.rows) - 1
+
+    @property
+    def last_column(self) -> int:
+        """Column number of the last column of the widest row."""
+        return self.first_column + max(map(len, self.rows), default=0) - 1
+
+    def value(self, row: int, column: int) -> Value:
+        """The cell at (row, column); ``""`` for an empty cell and for every place outside the used range."""
+        if row < self.first_row or column < self.first_column or row > self.last_row:
+            return ""
+        cells = self.rows[row - self.first_row]
+        place = column - self.first_column
+        return cells[place] if place < len(cells) else ""
+
+    def row(self, row: int) -> list[Value]:
+        """The cells of one row from column 1 on, so that index ``column - 1`` is the cell of ``column``."""
+        if not self.first_row <= row <= self.last_row:
+            return []
+        return [""] * (self.first_column - 1) + self.rows[row - self.first_row]
+
+    def column(self, column: int, start: int, stop: int) -> list[Value]:
+        """The cells of one column in rows ``start`` up to, not including, ``stop``."""
+        place = column - self.first_column
+        rows = self.rows[max(start - self.first_row, 0) : max(stop - self.first_row, 0)]
+        if place < 0:
+            inside: list[Value] = [""] * len(rows)
+        else:
+            try:
+                inside = [cells[place] for cells in rows]
+            except IndexError:
+                inside = [cells[place] if place < len(cells) else "" for cells in rows]
+        above = min(max(self.first_row - start, 0), max(stop - start, 0))
+        below = max(stop - start, 0) - above - len(inside)
+        return [""] * above + inside + [""] * below
+
+    def column_floats(self, column: int, start: int, stop: int) -> tuple[NDArray[np.float64], list[int]]:
+        """The numbers of one column in rows ``start`` up to, not including, ``stop``.
+
+        Returns float64, shape (stop - start,), NaN where there is no plain number, and the row numbers whose cell
+        holds something that is not a plain finite number: text, date, boolean, error, formula without a value, NaN,
+        infinity. Blank cells are NaN and are not listed. Number formats (percent, unit) are not applied: ask ``odd``.
+        """
+        cells = self.column(column, start, stop)
+        numbers = _text_floats(cells, self.decimal) if self.is_text else _number_floats(cells)
+        finite = np.isfinite(numbers)
+        bad = {start + int(place) for place in np.flatnonzero(~finite) if not is_blank(cells[place])}
+        for run in self.odd.in_column(column, start, stop):
+            if run.cell.kind in (OddKind.ERROR, OddKind.NO_VALUE):
+                rows = range(max(run.first, start), min(run.last + 1, stop))
+                bad.update(rows)
+                finite[rows.start - start : rows.stop - start] = False
+        numbers[~finite] = np.nan
+        return numbers, sorted(bad)
+
+    def oddities(self, row: int, column: int) -> list[OddCell]:
+        """Everything odd about one cell: of its value, its format, its visibility and its merged range."""
+        found = [odd] if (odd := self.odd.at(row, column)) else []
+        value = self.value(row, column)
+        if not found and isinstance(value, datetime | date | time | timedelta):
+            found.append(OddCell(OddKind.DATE))
+        if isinstance(value, str) and not self.is_text and looks_numeric(value):
+            found.append(OddCell(OddKind.TEXT_NUMBER))
+        if row in self.hidden_rows:
+            found.append(OddCell(OddKind.HIDDEN, f"row {row}"))
+        if column in self.hidden_columns:
+            found.append(OddCell(OddKind.HIDDEN, f"column {column_letter(column)}"))
+        if area := self.merged_range(row, column):
+            found.append(OddCell(OddKind.MERGED, str(area)))
+        return found
+
+    def merged_range(self, row: int, column: int) -> CellRange | None:
+        """The merged range that holds the cell; its value stands in the upper left cell, the anchor."""
+        return next((area for area in self.merged if (row, column) in area), None)
+
+    def where(self, row: int | None = None, column: int | None = None) -> str:
+        """The place as people write it: file, sheet, cell."""
+        parts = [self.file, self.name if self.name != self.file else ""]
+        if row is not None:
+            parts.append(f"row {row}" if column is None else address(row, column))
+        return ", ".join(part for part in parts if part)
+
+
+def sheet(grids: Iterable[Grid], name: str) -> Grid:
+    """The grid called ``name`` (compared without case and outer blanks); FileError with the names that there are."""
+    known: Sequence[Grid] = list(grids)
+    wanted = name.strip().casefold()
+    for grid in known:
+        if grid.name.strip().casefold() == wanted:
+            return grid
+    raise FileError(
+        f"there is no sheet {name!r}",
+        where=known[0].file if known else "",
+        hint="sheets in the file: " + (", ".join(repr(grid.name) for grid in known) or "none"),
+    )
+
+
+def address(row: int, column: int) -> str:
+    """``address(17, 3)`` is ``"C17"``."""
+    return f"{column_letter(column)}{row}"
+
+
+def column_letter(column: int) -> str:
+    """``column_letter(28)`` is ``"AB"``."""
+    letters = ""
+    while column > 0:
+        column, place = divmod(column - 1, 26)
+        letters = chr(65 + place) + letters
+    return letters
+
+
+def column_number(letters: str) -> int:
+    """``column_number("AB")`` is 28."""
+    number = 0
+    for letter in letters.upper():
+        number = number * 26 + ord(letter) - 64
+    return number
+
+
+def is_blank(value: Value) -> bool:
+    """Nothing is written in the cell (blanks and no-break spaces count as nothing)."""
+    return isinstance(value, str) and not value.strip()
+
+
+def looks_numeric(text: str) -> bool:
+    """The text is a number as people write them: sign, digits, separators, exponent, perhaps a percent sign."""
+    return _LOOKS_NUMERIC.fullmatch(text.strip()) is not None
+
+
+def _number_floats(cells: list[Value]) -> NDArray[np.float64]:
+    """Cells of a workbook: numbers stay, all else (numbers stored as text and booleans, too) is NaN."""
+    if set(map(type, cells)) <= {float, int}:
+        return np.array(cells, dtype=np.float64)
+    return np.array([cell if type(cell) in (float, int) else np.nan for cell in cells], dtype=np.float64)
+
+
+def _text_floats(cells: list[Value], decimal: str) -> NDArray[np.float64]:
+    """Cells of a csv file. numpy (like ``float``) also takes ``1_000`` and digits of other scripts: not here."""
+    texts = [str(cell) for cell in cells]
+    joined = "".join(texts)
+    if decimal == "." and joined.isascii() and "_" not in joined:
+        try:
+            return np.array(texts, dtype=np.float64)
+        except ValueError:
+            pass  # some cell is not a number: find out which
+    return np.array([_text_float(text.strip(), decimal) for text in texts], dtype=np.float64)
+
+
+def _text_float(text: str, decimal: str) -> float:
+    """A plain number with this decimal mark; an ambiguous mark leaves only numbers without one."""
+    if decimal != "." and "." in text:
+        return np.nan
+    if decimal == ",":
+        text = text.replace(",", ".")
+    return float(text) if _NUMBER.fullmatch(text) else np.nan
