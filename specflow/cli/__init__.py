@@ -44,7 +44,7 @@ def build() -> typer.Typer:
     """Return the application with all commands."""
     app = typer.Typer(
         name="specflow",
-        help="Which limit is proved, at which condition, by which number? Requirements, evidence and verdicts for radios.",
+        help="Which limit is proved, at which condition, by which number? From radio specification to evidence.",
         no_args_is_help=True,
         add_completion=False,
         pretty_exceptions_enable=False,

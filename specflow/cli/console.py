@@ -37,7 +37,8 @@ def ask(question: str) -> bool:
     """Ask on the terminal; without one the answer is no, and the person is told which option says yes."""
     if not (sys.stdin.isatty() and sys.stderr.isatty()):
         raise SpecflowError(
-            "nothing was stored: there is no terminal to ask on", hint="say --yes to accept, --dry-run to look only"
+            "nothing was stored: there is no terminal to ask on",
+            hint="say --yes to accept, --dry-run to look only",
         )
     print(f"{question} [y/N] ", end="", file=sys.stderr, flush=True)
     return sys.stdin.readline().strip().casefold() in ("y", "yes")

@@ -34,7 +34,8 @@ TakeRestOption = Annotated[
     typer.Option("--take-rest", help="Store what could be read although something was rejected."),
 ]
 AsOfOption = Annotated[
-    str, typer.Option("--as-of", help="Judge as of this date (YYYY-MM-DD); default: today.", show_default=False)
+    str,
+    typer.Option("--as-of", help="Judge as of this date (YYYY-MM-DD); default: today.", show_default=False),
 ]
 
 
@@ -53,7 +54,8 @@ def find_project(project: str) -> str:
             hint="specflow init NAME makes one; --project names one elsewhere; specflow demo shows an example",
         )
     raise SpecflowError(
-        f"there are {len(found)} projects in this folder: {', '.join(found)}", hint="choose one with --project"
+        f"there are {len(found)} projects in this folder: {', '.join(found)}",
+        hint="choose one with --project",
     )
 
 

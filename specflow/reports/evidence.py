@@ -1,0 +1,66 @@
+"""What was recorded: one row a quantity of an evidence table, with file, hash and how it was read."""
+
+from __future__ import annotations
+
+from specflow.model.evidence import EvidenceFile, EvidenceTable, ValueColumn
+from specflow.model.origin import column_letters
+from specflow.model.report import Align, CellTone, ReportCell, ReportColumn, ReportRow, ReportTable
+from specflow.model.snapshot import Results, Snapshot
+from specflow.reports.figures import text
+
+EVIDENCE_COLUMNS = (
+    ReportColumn(key="table", title="Table", width=12),
+    ReportColumn(key="file", title="File", width=32),
+    ReportColumn(key="sheet", title="Sheet", width=18),
+    ReportColumn(key="block", title="Block", width=14),
+    ReportColumn(key="parameter", title="Parameter", width=22),
+    ReportColumn(key="column", title="Column", width=8),
+    ReportColumn(key="unit", title="Unit", width=10),
+    ReportColumn(key="unit_from", title="Unit found in", width=22),
+    ReportColumn(key="uncertainty", title="Uncertainty from", width=30),
+    ReportColumn(key="rows", title="Rows", align=Align.RIGHT, width=8),
+    ReportColumn(key="method", title="Method", width=12),
+    ReportColumn(key="stage", title="Stage", width=14),
+    ReportColumn(key="performer", title="Performed by", width=18),
+    ReportColumn(key="performed_on", title="Performed on", width=13),
+    ReportColumn(key="accepted", title="Accepted by", width=18),
+    ReportColumn(key="serves", title="Serves", width=30),
+    ReportColumn(key="sha256", title="SHA-256 of the file", width=66),
+)
+
+
+def evidence_table(snapshot: Snapshot, results: Results) -> ReportTable:
+    """Return one row a recorded quantity."""
+    files = {file.id: file for file in snapshot.all(EvidenceFile)}
+    rows = tuple(
+        _row(table, column, files.get(table.file), results)
+        for table in snapshot.tables
+        for column in table.values
+    )
+    return ReportTable(key="evidence", title="Evidence", columns=EVIDENCE_COLUMNS, rows=rows)
+
+
+def _row(table: EvidenceTable, column: ValueColumn, file: EvidenceFile | None, results: Results) -> ReportRow:
+    unmatched = results.unmatched.get(table.id, "")
+    return ReportRow(
+        id=table.id,
+        cells=(
+            ReportCell(text=table.id),
+            text(file.name if file else table.file),
+            text(table.sheet),
+            text(table.block),
+            text(column.quantity.parameter),
+            text(column_letters(column.column)),
+            text(column.unit),
+            text(column.unit_from),
+            text(column.uncertainty_from),
+            ReportCell(text=str(table.rows), number=float(table.rows)),
+            text(table.method.value),
+            text(table.stage.value),
+            text(table.performer),
+            text(table.performed_on or ""),
+            text(f"{table.accepted_by} {table.accepted_at}".strip()),
+            text(unmatched, CellTone.DOUBTFUL) if unmatched else text("a requirement"),
+            text(file.sha256 if file else ""),
+        ),
+    )
