@@ -1,0 +1,233 @@
+"""From factors to a unit: which kind the product is, and its canonical symbol."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from fractions import Fraction
+
+from specflow.errors import UnitError
+from specflow.units import dimension, foreign, names
+from specflow.units.factors import Factor
+from specflow.units.kinds import Kind
+from specflow.units.names import Name
+from specflow.units.table import AMBIGUOUS, LogRow
+from specflow.units.unit import Unit
+
+_KIND_OF_DIMENSION = {
+    "ratio": Kind.RATIO,
+    "power": Kind.LEVEL,
+    "power flux": Kind.POWER_FLUX,
+    "electric field": Kind.FIELD_LEVEL,
+    "magnetic field": Kind.FIELD_LEVEL,
+    "dB per length": Kind.DB_PER_LENGTH,
+}
+_KIND_IN_BANDWIDTH = {
+    Kind.LEVEL: Kind.LEVEL_DENSITY,
+    Kind.POWER_FLUX: Kind.POWER_FLUX_DENSITY,
+    Kind.FIELD_LEVEL: Kind.FIELD_DENSITY,
+    Kind.RATIO: Kind.RATIO_DENSITY,
+}
+
+
+@dataclass(frozen=True, slots=True)
+class _Part:
+    """A factor with its name looked up; ``written`` is its canonical spelling without the exponent."""
+
+    written: str
+    exponent: Fraction
+    scale: Fraction
+    exponents: dimension.Exponents
+    is_decibel: bool = False
+
+    @property
+    def dimension(self) -> str:
+        return dimension.name(self.exponents)
+
+
+def composed(factors: list[Factor]) -> Unit:
+    """The unit of a product: a level in dB over something, or a product of linear units."""
+    row = names.log_row(factors[0].name)
+    if row is None and factors[0].name.casefold().startswith("db"):
+        raise _unknown(factors[0].name)
+    if len(factors) == 1 and factors[0] == Factor(factors[0].name):
+        return logarithmic(row) if row else linear(_named(factors[0].name))
+    if row is not None and row.symbol != "dB":
+        return _over(row, [_part(factor) for factor in factors[1:]])
+    parts = [_part(factor) for factor in factors]
+    if row is not None and _is_merit(parts):
+        return _merit()
+    return _product(parts)
+
+
+def logarithmic(row: LogRow) -> Unit:
+    """The unit of one row of the logarithmic table."""
+    if not row.reference:
+        return Unit(row.symbol, row.kind, "ratio", is_log=True, gauge=row.gauge)
+    scale, exponents = (Fraction(1), dimension.read("m^2")) if row.reference == "m^2" else _reference(row.reference)
+    return Unit(
+        row.symbol, row.kind, dimension.name(exponents), float(scale), is_log=True, log_factor=row.log_factor
+    )
+
+
+def linear(name: Name) -> Unit:
+    """The unit of one linear name."""
+    kind = _KIND_OF_DIMENSION.get(name.dimension, Kind.PHYSICAL)
+    return Unit(name.symbol, kind, name.dimension, float(name.scale), float(name.offset))
+
+
+def measured(unit: Unit, measure: str) -> Unit:
+    """The unit with the measure that was written behind it: V rms, dB p-p."""
+    if unit.measure:
+        raise UnitError(f"'{unit.symbol}' already says {unit.measure}: it cannot be {measure} too")
+    return replace(unit, symbol=f"{unit.symbol} {measure}", measure=measure)
+
+
+def referred(factors: list[Factor]) -> Unit:
+    """The unit written as dB(reference), the notation of ITU-R V.574: dB(W/m²), dB(µV/m), dB(m) for dB(1 mW)."""
+    if factors == [Factor("m")]:
+        return composed([Factor("dBm")])
+    if factors in ([Factor("K", Fraction(-1))], [Factor("", Fraction(1)), Factor("K", Fraction(-1))]):
+        return _merit()
+    head, *rest = factors
+    if rest and head.exponent == 1 and head.coefficient == 1:
+        return composed([Factor("dBm" if head.name == "mW" else f"dB{head.name}"), *rest])
+    return composed([Factor("dBm" if head.name == "mW" else f"dB{head.name}", head.exponent, head.coefficient)])
+
+
+def _over(row: LogRow, parts: list[_Part]) -> Unit:
+    """A logarithmic unit over an area, a length, a bandwidth, a temperature."""
+    unit = logarithmic(row)
+    bandwidths = [part for part in parts if part.dimension == "frequency" and part.exponent == -1]
+    others = [part for part in parts if part not in bandwidths]
+    if unit.gauge == "i" and not bandwidths and _is_merit([_DECIBEL, *others]):
+        return _merit()
+    if others:
+        unit = _per_space(unit, others)
+    return _in_bandwidth(unit, bandwidths) if bandwidths else unit
+
+
+def _per_space(unit: Unit, parts: list[_Part]) -> Unit:
+    """dBW over m², dBµV over m."""
+    scale, exponents = _multiplied(parts)
+    over = dimension.name(exponents)
+    field = {"voltage": "electric field", "current": "magnetic field"}.get(unit.dimension)
+    if unit.kind is Kind.LEVEL and unit.dimension == "power" and over == "m^-2":
+        kind, name = Kind.POWER_FLUX, "power flux"
+    elif unit.kind is Kind.LEVEL and field and over == "m^-1":
+        kind, name = Kind.FIELD_LEVEL, field
+    else:
+        raise UnitError(f"'{_symbol(unit.symbol, parts)}' is not a quantity: {unit.symbol} is not counted per {over}")
+    symbol = _symbol(unit.symbol, parts)
+    return replace(unit, symbol=symbol, kind=kind, dimension=name, scale=float(Fraction(unit.scale) * scale))
+
+
+def _in_bandwidth(unit: Unit, bandwidths: list[_Part]) -> Unit:
+    """A level, flux or ratio in its reference bandwidth."""
+    symbol = _symbol(unit.symbol, bandwidths)
+    kind = _KIND_IN_BANDWIDTH.get(unit.kind)
+    if kind is None or len(bandwidths) > 1 or unit.gauge not in ("", "c", "r", "FS"):
+        raise UnitError(f"'{symbol}' is not a quantity: {unit.symbol} is not counted per bandwidth")
+    return replace(unit, symbol=symbol, kind=kind, bandwidth_hz=float(bandwidths[0].scale))
+
+
+def _product(parts: list[_Part]) -> Unit:
+    """A product of linear units; power over a bandwidth stays a density and does not become an energy."""
+    bandwidths = [part for part in parts if part.dimension == "frequency" and part.exponent == -1]
+    others = [part for part in parts if part not in bandwidths]
+    if others and bandwidths:
+        rest = _plain_product(others)
+        if rest.kind in _KIND_IN_BANDWIDTH and rest.kind is not Kind.RATIO:
+            return _in_bandwidth(rest, bandwidths)
+    if [part.written for part in parts if part.is_decibel] and _is_decibel_per_hertz(parts):
+        raise UnitError("unit 'dB/Hz' has more than one meaning", hint=AMBIGUOUS["dB/Hz"])
+    return _plain_product(parts)
+
+
+def _plain_product(parts: list[_Part]) -> Unit:
+    scale, exponents = _multiplied(parts)
+    name = dimension.name(exponents)
+    symbol = _symbol("", parts)
+    if parts[0].written[0].isdigit() and parts[0].exponent > 0 and parts[0].written != "1":
+        raise UnitError(f"'{symbol}' is a value with a unit, not a unit")
+    kind = Kind.DB_SLOPE if "dB" in exponents else Kind.PHYSICAL
+    return Unit(symbol, _KIND_OF_DIMENSION.get(name, kind), name, float(scale))
+
+
+def _is_decibel_per_hertz(parts: list[_Part]) -> bool:
+    return len(parts) == 2 and parts[0].is_decibel and parts[1].written == "Hz"
+
+
+def _is_merit(parts: list[_Part]) -> bool:
+    return len(parts) == 2 and parts[0].is_decibel and (parts[1].written, parts[1].exponent) == ("K", -1)
+
+
+def _merit() -> Unit:
+    return Unit("dB/K", Kind.MERIT, "1/temperature", is_log=True, log_factor=10)
+
+
+_DECIBEL = _Part("dB", Fraction(1), Fraction(1), {"dB": Fraction(1)}, is_decibel=True)
+
+
+def _part(factor: Factor) -> _Part:
+    if factor.name.casefold() == "db":
+        return replace(_DECIBEL, exponent=factor.exponent)
+    if not factor.name:
+        return _Part(_number(factor.coefficient), factor.exponent, factor.coefficient, {})
+    name = _named(factor.name)
+    written = name.symbol if factor.coefficient == 1 else f"{_number(factor.coefficient)} {name.symbol}"
+    return _Part(written, factor.exponent, name.scale * factor.coefficient, dict(name.exponents))
+
+
+def _named(text: str) -> Name:
+    name = names.linear_name(text) or foreign.linear_name(text)
+    if name is None:
+        raise _unknown(text)
+    return name
+
+
+def _unknown(text: str) -> UnitError:
+    close = names.nearest(text)
+    return UnitError(f"unit '{text}' is not known", hint=f"nearest: {', '.join(close)}" if close else "")
+
+
+def _reference(symbol: str) -> tuple[Fraction, dimension.Exponents]:
+    name = _named(symbol)
+    return name.scale, dict(name.exponents)
+
+
+def _multiplied(parts: list[_Part]) -> tuple[Fraction, dimension.Exponents]:
+    scale: Fraction = Fraction(1)
+    exponents: dimension.Exponents = {}
+    for part in parts:
+        scale *= _power(part.scale, part.exponent)
+        exponents = dimension.multiply(exponents, part.exponents, part.exponent)
+    return scale, exponents
+
+
+def _power(base: Fraction, exponent: Fraction) -> Fraction:
+    """Exact for whole exponents; a root is the nearest float."""
+    return base**exponent.numerator if exponent.denominator == 1 else Fraction(float(base) ** float(exponent))
+
+
+def _number(value: Fraction) -> str:
+    return str(value.numerator) if value.denominator == 1 else f"{float(value):.15g}"
+
+
+def _symbol(head: str, parts: list[_Part]) -> str:
+    """The canonical spelling: what is above the line joined by ·, each factor below behind its own solidus."""
+    merged: dict[str, Fraction] = {}
+    for part in parts:
+        merged[part.written] = merged.get(part.written, Fraction(0)) + part.exponent
+    above = [_raised(written, exponent) for written, exponent in merged.items() if exponent > 0 and written != "1"]
+    below = [_raised(written, -exponent) for written, exponent in merged.items() if exponent < 0]
+    return "/".join([head or "·".join(above) or "1", *below])
+
+
+def _raised(written: str, exponent: Fraction) -> str:
+    if exponent == Fraction(1, 2):
+        return f"√{written}"
+    signs = {Fraction(1): "", Fraction(2): "²", Fraction(3): "³"}
+    written = f"({written})" if " " in written and exponent != 1 else written
+    return written + signs.get(exponent, f"^{exponent}" if exponent.denominator == 1 else f"^({exponent})")
+
+
