@@ -1,0 +1,169 @@
+"""Which record serves which required point.
+
+A record serves at most one point: the nearest of those within whose tolerance it lies. One that lies within
+the tolerance of several is *ambiguous* and is reported. A condition that a record does not state never
+matches.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.conditions.axes import Axis, Floats, NumericAxis, TextAxis
+from specflow.conditions.points import LARGEST_KEY, Points
+from specflow.conditions.recorded import recording_note
+from specflow.conditions.search import nearest_points
+from specflow.model.columns import Columns
+
+Rows = NDArray[np.int32]
+_NONE = np.zeros(0, np.int32)
+
+
+@dataclass(frozen=True, slots=True)
+class Matching:
+    """Pairs ``record[i]`` serves ``point[i]``, sorted by point (then along the range, then by record).
+
+    ``along`` is the actual value along the range, None where the points are single values. ``ambiguous`` are
+    the records within the tolerance of several points. ``notes`` say which units were converted or could not
+    be.
+    """
+
+    record: Rows
+    point: Rows
+    along: Floats | None
+    ambiguous: Rows
+    notes: tuple[str, ...] = ()
+
+
+def match(points: Points, records: Columns) -> Matching:
+    """Match records with required points; all items at once (``proves`` tells them apart by a mask)."""
+    notes = _notes(points, records)
+    seen = _read(points.axes, records)
+    if seen is None:
+        empty = None if points.range_axis is None else np.zeros(0)
+        return Matching(_NONE, _NONE, empty, _NONE, notes)
+    if points.key_count < LARGEST_KEY:
+        record, point, ambiguous = _by_key(points, seen, records.size)
+    else:
+        everyone = np.ones(records.size, np.bool_)
+        nobody = np.zeros(0, np.intp), np.zeros(0, np.int32)
+        record, point, ambiguous = _search_crowded(points, seen, *nobody, everyone)
+    return _sorted(points, seen, record, point, ambiguous.astype(np.int32), notes)
+
+
+def unstated_conditions(points: Points, records: Columns) -> dict[str, Rows]:
+    """Return for each required dimension the records that do not state it (in a comparable unit); none is
+    left out.
+    """
+    unstated: dict[str, Rows] = {}
+    for axis in points.axes:
+        for name in axis.names:
+            rows = _unstated(axis, name, records)
+            if len(rows):
+                unstated[name] = rows
+    return unstated
+
+
+def _read(axes: tuple[Axis, ...], records: Columns) -> list[Floats] | None:
+    seen = []
+    for axis in axes:
+        actual = axis.read(records)
+        if actual is None:
+            return None
+        seen.append(actual)
+    return seen
+
+
+def _by_key(
+    points: Points, seen: list[Floats], size: int
+) -> tuple[NDArray[np.intp], NDArray[np.int32], NDArray[np.intp]]:
+    keys, crowded = _keys(points, seen, size)
+    record = np.flatnonzero(keys >= 0)
+    point = points.at_keys(keys[record])
+    if not points.is_full:
+        served = point >= 0
+        record, point = record[served], point[served]
+    if crowded is None:
+        return record, point, np.zeros(0, np.intp)
+    if points.is_full:
+        return record, point, record[crowded[record]]
+    return _search_crowded(points, seen, record, point, crowded)
+
+
+def _keys(
+    points: Points, seen: list[Floats], size: int
+) -> tuple[NDArray[np.int64], NDArray[np.bool_] | None]:
+    """Return the key of the combination that each record serves (negative for none), and the crowded records."""
+    keys: NDArray[np.int64] | None = None
+    crowded: NDArray[np.bool_] | None = None
+    for axis, actual, stride in zip(points.axes, seen, points.strides, strict=True):
+        weights, several = axis.weigh(actual, stride)
+        keys = weights if keys is None else keys + weights
+        if several is not None and several.any():
+            crowded = several if crowded is None else crowded | several
+    return np.zeros(size, np.int64) if keys is None else keys, crowded
+
+
+def _search_crowded(
+    points: Points,
+    seen: list[Floats],
+    record: NDArray[np.intp],
+    point: NDArray[np.int32],
+    crowded: NDArray[np.bool_],
+) -> tuple[NDArray[np.intp], NDArray[np.int32], NDArray[np.intp]]:
+    """Settle the crowded records against the points that exist: the nearest combination may not be one of
+    them.
+    """
+    plain = ~crowded[record]
+    rows = np.flatnonzero(crowded)
+    nearest, several = nearest_points(points.axes, points.codes, [actual[rows] for actual in seen])
+    served = nearest >= 0
+    record = np.concatenate([record[plain], rows[served]])
+    point = np.concatenate([point[plain], nearest[served].astype(np.int32)])
+    return record, point, rows[served & several]
+
+
+def _sorted(
+    points: Points,
+    seen: list[Floats],
+    record: NDArray[np.intp],
+    point: NDArray[np.int32],
+    ambiguous: Rows,
+    notes: tuple[str, ...],
+) -> Matching:
+    axis = points.range_axis
+    if axis is None:
+        order = np.argsort(point, kind="stable")
+        return Matching(record[order].astype(np.int32), point[order], None, ambiguous, notes)
+    place = points.axes.index(axis)
+    along = axis.along(seen[place][record], points.codes[place][point])
+    order = np.lexsort((along, point))
+    return Matching(record[order].astype(np.int32), point[order], along[order], ambiguous, notes)
+
+
+def _notes(points: Points, records: Columns) -> tuple[str, ...]:
+    units = points.columns_lo.units
+    recorded = records.units
+    if all(recorded.get(name, "") == unit for name, unit in units.items()):
+        return ()
+    notes = (recording_note(records, name, unit) for name, unit in units.items())
+    return tuple(note for note in notes if note)
+
+
+def _unstated(axis: Axis, name: str, records: Columns) -> Rows:
+    if isinstance(axis, TextAxis):
+        column = records.text.get(name)
+        if column is not None:
+            return np.flatnonzero(column.codes < 0).astype(np.int32)
+    actual = axis.read(records)
+    if actual is None:
+        return np.arange(records.size, dtype=np.int32)
+    if isinstance(axis, NumericAxis | TextAxis):
+        return np.flatnonzero(np.isnan(actual)).astype(np.int32)
+    stated = records.numeric.get(name)
+    if stated is None:
+        return np.flatnonzero(np.isnan(actual[:, 0])).astype(np.int32)
+    return np.flatnonzero(np.isnan(stated) & np.isnan(actual[:, 0])).astype(np.int32)
