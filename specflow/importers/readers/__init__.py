@@ -30,6 +30,7 @@ from specflow.importers.readers.grid import (
     looks_numeric,
     sheet,
 )
+from specflow.importers.readers.inspection import comments, formulas
 from specflow.importers.readers.source import FileFingerprint, Source, read_source
 from specflow.importers.readers.xlsx import read_xlsx
 
@@ -49,6 +50,8 @@ __all__ = [
     "address",
     "column_letter",
     "column_number",
+    "comments",
+    "formulas",
     "is_blank",
     "looks_numeric",
     "open_grids",

@@ -22,7 +22,7 @@ MAX_SMALL_PART_BYTES = 64 * 1024 * 1024
 MAX_RATIO = 250  # the deflate limit is about 1030; sheets of equal rows reach 60 to 100
 RATIO_FREE_BYTES = 8 * 1024 * 1024  # below this a high ratio harms nobody
 
-_CHUNK = 512 * 1024
+_CHUNK = 2 * 1024 * 1024
 _LOCAL_HEADER = struct.Struct("<4s5H3L2H")
 _FORBIDDEN = (b"<!DOCTYPE", b"<!ENTITY")
 
@@ -58,7 +58,7 @@ class Archive:
         )
 
     def stream(self, part: str) -> Iterator[bytes]:
-        """The content of a part in pieces of at most half a MiB; never more than its directory entry declares."""
+        """The content of a part in pieces of at most two MiB; never more than its directory entry declares."""
         total, checksum = 0, 0
         info = self._info(part)
         for piece in self._pieces(info):

@@ -99,7 +99,7 @@ class SheetEvents:
 
     def _start_cell(self, attributes: dict[str, str]) -> None:
         if reference := attributes.get("r"):
-            self._row, self._column = _place(reference)
+            self._row, self._column = cell_place(reference)
         else:
             self._column += 1
         if not 1 <= self._row <= MAX_ROW or not 1 <= self._column <= MAX_COLUMN:
@@ -141,7 +141,8 @@ def _style(text: str) -> int:
     return int(text) if text.isdigit() and len(text) < 7 else -1
 
 
-def _place(reference: str) -> tuple[int, int]:
+def cell_place(reference: str) -> tuple[int, int]:
+    """``C17`` is row 17, column 3; raises SheetProblem for what is no reference."""
     if (match := _REFERENCE.fullmatch(reference)) is None:
         raise SheetProblem(f"{reference[:20]!r} is no cell of a sheet")
     return int(match[2]), column_number(match[1])
@@ -149,4 +150,4 @@ def _place(reference: str) -> tuple[int, int]:
 
 def _cell_range(reference: str) -> CellRange:
     first, _, last = reference.partition(":")
-    return CellRange(*_place(first), *_place(last or first))
+    return CellRange(*cell_place(first), *cell_place(last or first))

@@ -9,15 +9,18 @@ from __future__ import annotations
 
 import re
 from bisect import bisect_right
-from collections.abc import Iterable, Iterator, Sequence
+from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass, field
 from datetime import date, datetime, time, timedelta
 from enum import StrEnum
+from typing import TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
 
 from specflow.errors import FileError
+
+T = TypeVar("T")
 
 Value = str | float | int | bool | datetime | date | time | timedelta
 """What a cell can hold; an empty cell is ``""``."""
@@ -110,8 +113,8 @@ class CellRange:
 class Grid:
     """One sheet of a workbook, or one csv file.
 
-    ``rows[0][0]`` is the cell at (``first_row``, ``first_column``); rows may be of unequal length. ``is_text`` says that
-    all cells are text as written (csv); ``decimal`` is then the decimal mark found, ``""`` when it is ambiguous.
+    ``rows[0][0]`` is the cell at (``first_row``, ``first_column``); rows may be of unequal length. ``is_text`` says
+    that all cells are text as written (csv); ``decimal`` is then the decimal mark found, ``""`` when it is ambiguous.
     ``comment_rows`` are csv lines that began with a comment mark, which is taken off. ``notes`` say what the reader
     did or saw on the way.
     """
@@ -219,16 +222,18 @@ class Grid:
 
 def sheet(grids: Iterable[Grid], name: str) -> Grid:
     """The grid called ``name`` (compared without case and outer blanks); FileError with the names that there are."""
-    known: Sequence[Grid] = list(grids)
+    known = {grid.name: grid for grid in grids}
+    return by_sheet_name(known, name, next((grid.file for grid in known.values()), ""))
+
+
+def by_sheet_name(known: Mapping[str, T], name: str, file: str) -> T:
+    """What stands in ``known`` under a sheet name, compared without case and outer blanks."""
     wanted = name.strip().casefold()
-    for grid in known:
-        if grid.name.strip().casefold() == wanted:
-            return grid
-    raise FileError(
-        f"there is no sheet {name!r}",
-        where=known[0].file if known else "",
-        hint="sheets in the file: " + (", ".join(repr(grid.name) for grid in known) or "none"),
-    )
+    for there, found in known.items():
+        if there.strip().casefold() == wanted:
+            return found
+    names = ", ".join(map(repr, known)) or "none"
+    raise FileError(f"there is no sheet {name!r}", where=file, hint=f"sheets in the file: {names}")
 
 
 def address(row: int, column: int) -> str:

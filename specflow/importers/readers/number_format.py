@@ -29,6 +29,7 @@ _TOKEN = re.compile(
     r'"(?P<quoted>[^"]*)"?|\\(?P<escaped>.)|[_*].|\[(?P<bracket>[^\]]*)\]?|(?P<general>General)|(?P<plain>.)',
     re.IGNORECASE | re.DOTALL,
 )
+_NUMBER_HERE = "\0"
 _DATE_LETTERS = frozenset("ymdhsYMDHS")
 _DIGITS = frozenset("0#?")
 
@@ -61,12 +62,15 @@ def _classify(code: str) -> OddCell | None:
 
 
 def _split(code: str) -> tuple[str, str, bool]:
-    """The first section of a code: the text shown beside the number, the bare format signs, whether General is named."""
+    """The first section of a code: the text shown beside the number (that after it, else that before it), the bare
+    format signs, and whether General is named."""
     literal, bare, general = [], [], False
     for token in _TOKEN.finditer(code):
         kind, text = token.lastgroup, token[token.lastgroup] if token.lastgroup else ""
         if kind == "plain" and text == ";":
             break
+        if kind == "general" or (kind == "plain" and text in _DIGITS):
+            literal.append(_NUMBER_HERE)
         if kind == "general":
             general = True
         elif kind == "bracket":
@@ -76,8 +80,13 @@ def _split(code: str) -> tuple[str, str, bool]:
             bare.append(text)
         elif kind in ("quoted", "escaped", "plain"):
             literal.append(text)
-    shown = "".join(literal).replace("\u00a0", " ").strip(" ()-+")
+    before, _, after = "".join(literal).partition(_NUMBER_HERE)
+    shown = _trim(after.replace(_NUMBER_HERE, "")) or _trim(before)
     return shown, "".join(bare), general
+
+
+def _trim(text: str) -> str:
+    return text.replace("\u00a0", " ").strip(" ()-+")
 
 
 def _currency(bracket: str) -> str:

@@ -1,0 +1,121 @@
+"""What parts the fields of a text table, and which mark stands before decimals: judged from a sample of its lines."""
+
+from __future__ import annotations
+
+import csv
+import re
+from collections import Counter
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+BLANKS = " "
+"""Stands for runs of blanks and tabs."""
+
+DELIMITERS = ("\t", ";", ",", "|", BLANKS)
+"""In order of preference where two part the lines equally well."""
+
+SAMPLE_LINES = 400
+
+_NUMBER = re.compile(r"[<>≤≥]?\s*[+\-−]?(?:[0-9]+(?:[.,][0-9]*)?|[.,][0-9]+)(?:[eE][+\-−]?[0-9]+)?\s*%?")
+_WITH_COMMA = re.compile(r"[^,]*[0-9]*,[0-9]+[^,]*")
+_LIKE_THOUSANDS = re.compile(r"[+\-−]?[0-9]{1,3},[0-9]{3}")
+
+
+@dataclass(frozen=True, slots=True)
+class Layout:
+    """How the lines are parted. ``width`` is the usual number of fields; ``decimal`` is ``""`` when every number with
+    a comma could as well have it between thousands."""
+
+    delimiter: str
+    width: int
+    decimal: str
+
+
+class AmbiguousComma(Exception):
+    """The comma may part fields or decimals, and nothing tells which."""
+
+
+def find_layout(lines: Sequence[str]) -> Layout:
+    """Judge the layout from lines that are neither blank nor comments; raises AmbiguousComma."""
+    sample = _sample(lines)
+    best, best_score, best_width = ",", 0.0, 1
+    for delimiter in DELIMITERS:
+        score, width = _score(sample, delimiter)
+        if score > best_score * 1.001:
+            best, best_score, best_width = delimiter, score, width
+    fields = [field for line in sample for field in split(line, best)]
+    if best == ",":
+        _refuse_decimal_comma(sample, best_width)
+        return Layout(best, best_width, ".")
+    return Layout(best, best_width, _decimal(fields))
+
+
+def split(line: str, delimiter: str) -> list[str]:
+    """The fields of one line, without the blanks around them."""
+    if delimiter == BLANKS:
+        return line.split()
+    if '"' not in line:
+        return [field.strip() for field in line.split(delimiter)]
+    try:
+        return [
+            field.strip() for field in next(csv.reader([line], delimiter=delimiter, skipinitialspace=True))
+        ]
+    except csv.Error:
+        return [field.strip() for field in line.split(delimiter)]
+
+
+def split_to_width(line: str, width: int, single_blanks: bool = False) -> list[str] | None:
+    """The fields of a header line that is parted otherwise than the body: by whatever gives ``width`` fields.
+
+    Single blanks part words, too, and count only where the body itself is parted by blanks.
+    """
+    ways = [split(line, delimiter) for delimiter in DELIMITERS if delimiter != BLANKS]
+    ways.append(re.split(r"\t+| {2,}", line.strip()))
+    if single_blanks:
+        ways.append(line.split())
+    return next((fields for fields in ways if len(fields) == width), None)
+
+
+def is_number(text: str) -> bool:
+    """The field is one number with either decimal mark."""
+    return _NUMBER.fullmatch(text) is not None
+
+
+def _sample(lines: Sequence[str]) -> Sequence[str]:
+    """Lines from the beginning, where the headers are, and from the middle, where the table is."""
+    if len(lines) <= SAMPLE_LINES:
+        return lines
+    half, middle = SAMPLE_LINES // 2, len(lines) // 2
+    return [*lines[:half], *lines[max(middle, half) : max(middle, half) + half]]
+
+
+def _score(sample: Sequence[str], delimiter: str) -> tuple[float, int]:
+    """How well a delimiter parts the lines: share of lines of the usual width, more if the fields are numbers."""
+    rows = [split(line, delimiter) for line in sample]
+    widths = Counter(len(row) for row in rows if len(row) > 1)
+    if not widths:
+        return 0.0, 1
+    width, count = max(widths.items(), key=lambda item: (item[1], item[0]))
+    fields = [field for row in rows if len(row) == width for field in row if field]
+    numbers = sum(map(is_number, fields)) / len(fields) if fields else 0.0
+    if delimiter == BLANKS and numbers < 0.5:
+        return 0.0, 1  # words, not columns
+    return sum(widths.values()) / len(rows) * (0.2 + count / len(rows)) * (1 + numbers), width
+
+
+def _decimal(fields: Sequence[str]) -> str:
+    numbers = [field for field in fields if is_number(field)]
+    commas = [number for number in numbers if "," in number]
+    if not commas or any("." in number for number in numbers):
+        return "."
+    return "" if all(_LIKE_THOUSANDS.fullmatch(number) for number in commas) else ","
+
+
+def _refuse_decimal_comma(sample: Sequence[str], width: int) -> None:
+    """``1,5,2,7`` under two titles: numbers without a decimal point, twice as many as there are titles."""
+    rows = [split(line, ",") for line in sample]
+    body = [row for row in rows if len(row) == width and all(map(is_number, row))]
+    titles = [row for row in rows if not any(map(is_number, row))]
+    whole = all(re.fullmatch(r"[+\-−]?[0-9]+", field) for row in body for field in row)
+    if body and whole and width % 2 == 0 and titles and len(titles[-1]) == width // 2:
+        raise AmbiguousComma

@@ -1,0 +1,68 @@
+"""The bytes of a text file as text, and what had to be done for it."""
+
+from __future__ import annotations
+
+import codecs
+
+from specflow.errors import FileError
+from specflow.importers.readers.source import Source
+
+_MARKS = (
+    (codecs.BOM_UTF8, "utf-8-sig"),
+    (codecs.BOM_UTF32_LE, "utf-32"),
+    (codecs.BOM_UTF32_BE, "utf-32"),
+    (codecs.BOM_UTF16_LE, "utf-16"),
+    (codecs.BOM_UTF16_BE, "utf-16"),
+)
+_SAMPLE = 4096
+
+
+def decode(source: Source) -> tuple[str, list[str]]:
+    """The text with ``\\n`` at line ends and without NUL, and notes on everything that was not plain UTF-8.
+
+    Raises FileError for content that is no text.
+    """
+    notes: list[str] = []
+    text = _decode(source, notes)
+    if nuls := text.count("\0"):
+        text = text.replace("\0", "")
+        notes.append(f"{nuls} NUL characters were left out")
+    text = text.replace("\r\n", "\n").replace("\r", "\n")
+    sample = text[:_SAMPLE]
+    control = sum(character < " " and character not in "\t\n\x0b\x0c\x1a\x1b" for character in sample)
+    if control > len(sample) // 50:
+        raise FileError(
+            "this is no text file", where=source.name, hint="export the table as csv or save it as .xlsx"
+        )
+    return text, notes
+
+
+def _decode(source: Source, notes: list[str]) -> str:
+    content = source.content
+    encoding = next((name for mark, name in _MARKS if content.startswith(mark)), _unmarked_utf16(content))
+    try:
+        text = content.decode(encoding or "utf-8")
+    except UnicodeDecodeError as error:
+        if encoding:
+            raise FileError(
+                f"the text breaks off or is damaged: it should be {encoding.removesuffix('-sig')}",
+                where=source.name,
+                hint="export the file again",
+            ) from error
+        notes.append("the text is not UTF-8; it was read as Windows-1252")
+        # five bytes have no meaning in Windows-1252: they become U+FFFD, which no number contains
+        return content.decode("cp1252", "replace")
+    if encoding and encoding != "utf-8-sig":
+        notes.append(f"the text was read as {encoding.upper()}")
+    return text
+
+
+def _unmarked_utf16(content: bytes) -> str | None:
+    """UTF-16 without a mark: every other byte is NUL (single NULs are dirt that instruments leave)."""
+    sample = content[:_SAMPLE]
+    half = len(sample) // 2
+    if half and sample[1::2].count(0) > 0.9 * half and sample[::2].count(0) < 0.1 * half:
+        return "utf-16-le"
+    if half and sample[::2].count(0) > 0.9 * half and sample[1::2].count(0) < 0.1 * half:
+        return "utf-16-be"
+    return None
