@@ -73,17 +73,21 @@ class Dictionary:
         """Return the parameters that a header names: none, one, or several when it is ambiguous.
 
         Key, title and aliases are compared by their words. A unit in the header, words that only qualify (rms, max,
-        measured) and what stands before a colon are left out where the rest names a parameter. ``unit``, or the one
-        in the header, settles an ambiguity between parameters of unlike kinds; it never turns one reading down.
+        measured) and what stands before a colon are left out where the rest names a parameter. ``unit`` is that of a
+        units row, where the header has none. The unit chooses among parameters of one name and unlike kinds ("gain"
+        in dB and in dBi); it never turns the only reading down.
         """
         parts = split_header(header)
+        if unit and not parts.unit:
+            parts = replace(parts, unit=unit, every=(*parts.every, *tokens(unit)))
         found = next(filter(None, self._readings(parts)), [])
         if not found and ":" in header:
             before, _, after = header.rpartition(":")
-            found = [replace(one, leftover=(*tokens(before), *one.leftover)) for one in self.match(after)]
-        unit = unit or parts.unit
-        suiting = [one for one in found if suits(one.parameter, unit)] if unit and len(found) > 1 else []
-        return suiting or found
+            found = [
+                replace(one, leftover=(*tokens(before), *one.leftover))
+                for one in self.match(after, unit=unit)
+            ]
+        return _fitting(found, parts.unit) or found
 
     def parameter_for_title(self, title: str) -> Parameter | None:
         """Return the one parameter that a title names, or None when it names none or several."""
@@ -174,6 +178,12 @@ def suits(parameter: Parameter, unit: str) -> bool:
     except UnitError:
         return False
     return True
+
+
+def _fitting(found: Sequence[Candidate], unit: str) -> list[Candidate]:
+    if not unit or len(found) < 2:
+        return list(found)
+    return [one for one in found if suits(one.parameter, unit)]
 
 
 def _candidate(parameter: Parameter, reason: str, unit: str, left_out: tuple[str, ...]) -> Candidate:

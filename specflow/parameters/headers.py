@@ -94,17 +94,25 @@ def qualifier_choices(words: Sequence[str]) -> Iterator[tuple[tuple[str, ...], t
 
 
 def _without_tail(name: str) -> tuple[str, str]:
-    """Cut a unit off the end: "Gain, dB", "Gain / dB", "Gain in dB", "gain_db"."""
+    """Cut a unit off the end: "Gain dBm/MHz", "gain_db", "Gain, dB", "Gain / dB", "Gain in dB"."""
+    before, blank, last = name.rstrip().rpartition(" ")
+    if blank and "/" in last.strip("/") and looks_like_unit(last):
+        return before, last
+    start = _start_of_unit_words(name)
+    if start:
+        return re.sub(r"\bin\s*$", "", name[:start]), name[start:].strip()
     tail = _TAIL.match(name)
     if tail and looks_like_unit(tail["unit"]):
         return tail["name"], tail["unit"].strip()
+    return name, ""
+
+
+def _start_of_unit_words(name: str) -> int:
+    """Return where the units (and bandwidths in figures) at the end begin, 0 where the end is no unit."""
     words = [(match.start(), match.group().casefold()) for match in _TOKEN.finditer(name)]
     start = len(words)
     while start > 1 and (words[start - 1][1] in _UNIT_WORDS or words[start - 1][1].isdecimal()):
         start -= 1
     while start < len(words) and words[start][1].isdecimal():
         start += 1
-    if start in (0, len(words)):
-        return name, ""
-    cut = words[start][0]
-    return name[:cut], name[cut:].strip()
+    return words[start][0] if 0 < start < len(words) else 0
