@@ -7,7 +7,8 @@ Where things live:
 - ``table``       every unit we know, as data; ``dimension`` names products of base quantities
 - ``spelling``    texts brought to plain signs; ``names`` and ``factors`` look up and take apart; ``compose`` puts the
                   unit together; ``parse`` is the entrance; ``foreign`` asks pint for what the table lacks
-- ``convert``     the resolved conversion; ``bridge`` bandwidth, impedance and gauge; ``refusal`` names the missing piece
+- ``convert``     the resolved conversion; ``bridge`` bandwidth, impedance and gauge; ``density`` reference bandwidths;
+                  ``refusal`` names the missing piece
 - ``quantity``    a value with its unit; ``number`` and ``reading`` the text of a cell
 - ``arithmetic``  add, subtract, compare; ``sums`` power sums and the two means of levels
 - ``tolerance``   the unit of a difference and how close is equal; ``planes`` what is missing between planes
@@ -18,13 +19,14 @@ relations between parameters.
 
 from specflow.units.arithmetic import add, compare, subtract
 from specflow.units.bridge import FREE_SPACE_OHM
-from specflow.units.convert import Converter, compatible, convert, converter
+from specflow.units.convert import Converter, bandwidth_bounds, compatible, convert, converter
+from specflow.units.density import density_of, level_of
 from specflow.units.kinds import Kind, Spectrum
 from specflow.units.number import parse_number
 from specflow.units.parse import parse_unit
 from specflow.units.planes import missing_between_planes
 from specflow.units.quantity import Quantity, format_quantity, format_value, parse_quantity, split_quantity
-from specflow.units.reading import Blank, Reading, parse_reading
+from specflow.units.reading import Blank, Reading, parse_reading, parse_reading_with_unit
 from specflow.units.sums import mean, mean_of_db, mean_of_power, power_sum
 from specflow.units.tolerance import closeness, same_within, to_tolerance, tolerance_unit
 from specflow.units.unit import DB_HERTZ, DECIBEL, KELVIN, ONE, PERCENT, Unit, format_unit
@@ -44,14 +46,17 @@ __all__ = [
     "Spectrum",
     "Unit",
     "add",
+    "bandwidth_bounds",
     "closeness",
     "compare",
     "compatible",
     "convert",
     "converter",
+    "density_of",
     "format_quantity",
     "format_unit",
     "format_value",
+    "level_of",
     "mean",
     "mean_of_db",
     "mean_of_power",
@@ -59,6 +64,7 @@ __all__ = [
     "parse_number",
     "parse_quantity",
     "parse_reading",
+    "parse_reading_with_unit",
     "parse_unit",
     "power_sum",
     "same_within",

@@ -1,7 +1,8 @@
 """Adding, subtracting and comparing quantities, by kind.
 
 level ± ratio is a level; level - level is a ratio; level + level is refused, because only a power sum can be meant and
-that must be asked for by name (``power_sum``). What is refused says which piece is missing.
+that must be asked for by name (``power_sum``). Watts add as they stand: there a sum cannot be anything else. What is
+refused says which piece is missing.
 """
 
 from __future__ import annotations
@@ -14,23 +15,33 @@ from numpy.typing import NDArray
 
 from specflow.errors import UnitError
 from specflow.units.convert import compatible, converter
+from specflow.units.density import density_of, level_of
 from specflow.units.kinds import Kind, Spectrum
 from specflow.units.parse import parse_unit
 from specflow.units.quantity import Quantity
-from specflow.units.tolerance import closeness, tolerance_unit
-from specflow.units.unit import DB_HERTZ, DECIBEL, Unit, format_unit
+from specflow.units.tolerance import same_within, tolerance_unit
+from specflow.units.unit import DB_HERTZ, DECIBEL, Unit
 
-_REFERRED = {"i", "ic", "d", "c", "r"}  # gauges that take a level to another level: an antenna gain, a level under a carrier
-_DENSITY_OF = {Kind.LEVEL: "dBm/Hz", Kind.RATIO: "dBc/Hz"}
+_DB_KELVIN = parse_unit("dBK")
+_MERIT = parse_unit("dB/K")
+_ANTENNA_FACTOR = parse_unit("dB(1/m)")
+# Gauges that take a level to another level: an antenna gain, a level under the carrier or under a reference.
+_REFERRED = {"i", "ic", "d", "c", "r"}
+_FIELD_OF = {"voltage": "electric field", "current": "magnetic field"}
+_RAISED_BY_DB = {Kind.LEVEL: 10, Kind.POWER_FLUX: 10, Kind.FIELD_LEVEL: 20}
 
 
 def add(a: Quantity, b: Quantity, *, spectrum: Spectrum = Spectrum.UNKNOWN) -> Quantity:
-    """The sum, in the unit that it has: level + ratio, °C + K, dBm/Hz + dBHz (noise-like only).
+    """The sum, in the unit that it has: level + ratio, level + antenna gain, °C + K, dBm/Hz + dBHz (noise-like only).
 
     Raises UnitError for what has no sum: two levels, two gains over isotropic, two absolute temperatures.
     """
     for left, right in ((a, b), (b, a)):
-        total = _plus(left, right, spectrum)
+        unit = _changed_by(left.unit, right.unit, spectrum)
+        if unit is not None:
+            base = left.value if unit.bandwidth_hz else _per_hertz(left)
+            return Quantity(base + right.value, unit)
+        total = _plus(left, right)
         if total is not None:
             return total
     raise UnitError(f"{a.unit} + {b.unit} has no meaning", hint=_why_no_sum(a.unit, b.unit))
@@ -39,99 +50,118 @@ def add(a: Quantity, b: Quantity, *, spectrum: Spectrum = Spectrum.UNKNOWN) -> Q
 def subtract(a: Quantity, b: Quantity, *, spectrum: Spectrum = Spectrum.UNKNOWN) -> Quantity:
     """The difference, in the unit that it has: level - level is a ratio in dB, level - ratio a level, °C - °C is K.
 
+    level - density is the bandwidth in dBHz (a carrier over a noise density), level - dBHz a noise-like density.
     Raises UnitError where the two measure different things.
     """
-    if _is_plain_ratio(b.unit) and a.unit.is_log:
-        return Quantity(a.value - b.value, a.unit)
-    if _takes_referred(a.unit, b.unit) or _is_step(a.unit, b.unit):
+    unit = _left_after(a.unit, b.unit, spectrum)
+    if unit is not None:
+        return Quantity(a.value - _per_hertz(b), unit)
+    if _is_step(a.unit, b.unit):
         return _stepped(a, b, -1.0)
-    joined = _without_bandwidth(a, b, spectrum)
-    if joined is not None:
-        return joined
-    if a.unit.is_log and not b.unit.is_log and compatible(b.unit, a.unit):
-        return Quantity(a.value - _in(b, a.unit), tolerance_unit(a.unit))
-    if b.unit.is_log and not a.unit.is_log and compatible(a.unit, b.unit):
+    raised = _raised(a, b, -1.0)
+    if raised is not None:
+        return raised
+    if b.unit.is_log and not a.unit.is_log:
         return Quantity(_in(a, b.unit) - b.value, tolerance_unit(b.unit))
-    return Quantity(a.value - _in(b, a.unit), tolerance_unit(a.unit)) if a.unit.is_log else _linear_difference(a, b)
+    return _difference(a, b)
 
 
 def compare(a: Quantity, b: Quantity) -> int | NDArray[np.int64]:
     """-1, 0 or 1 as ``a`` is below, equal to or above ``b``; an array where either is one.
 
     Values are compared as written; where ``b`` had to be converted they are equal within 1e-9 dB or 1e-9 relative.
-    Raises UnitError where the two cannot be compared without further information.
+    Raises UnitError where the two cannot be compared without further information, and for NaN.
     """
     resolved = converter(b.unit, a.unit)
-    other: Any = resolved(b.value)
-    scale: Any = np.maximum(np.abs(a.value), np.abs(other))
-    gap: Any = a.value - other
-    close = closeness(scale, a.unit, converted=not resolved.is_identity)
-    equal = (np.asarray(a.value) == other) | (np.abs(gap) <= close)
-    order = np.where(equal, 0, np.where(np.asarray(a.value) < other, -1, 1)).astype(np.int64)
+    left, right = np.broadcast_arrays(
+        np.asarray(a.value, np.float64), np.asarray(resolved(b.value), np.float64)
+    )
+    if np.isnan(left).any() or np.isnan(right).any():
+        raise UnitError("what is not a number cannot be compared")
+    equal = same_within(left, right, a.unit, converted=not resolved.is_identity)
+    order = np.where(equal, 0, np.where(left < right, -1, 1)).astype(np.int64)
     return int(order) if order.ndim == 0 else order
 
 
-def _plus(a: Quantity, b: Quantity, spectrum: Spectrum) -> Quantity | None:
-    """``a`` plus ``b`` where ``a`` is what is changed and ``b`` the change, or None."""
-    if _is_plain_ratio(b.unit) and (a.unit.is_log or a.unit.kind in (Kind.LEVEL, Kind.FIELD_LEVEL, Kind.POWER_FLUX)):
-        return _raised(a, b)
-    if _takes_referred(a.unit, b.unit) or _is_step(a.unit, b.unit):
+def _plus(a: Quantity, b: Quantity) -> Quantity | None:
+    """``a`` changed by ``b``, or None where ``b`` is not a change of ``a``."""
+    if _is_step(a.unit, b.unit):
         return _stepped(a, b, 1.0)
-    if a.unit.bandwidth_hz is not None and b.unit == DB_HERTZ and a.unit.is_log:
-        return _over_bandwidth(a, b, spectrum)
     if _adds_plainly(a.unit, b.unit):
         return Quantity(a.value + _in(b, a.unit), a.unit)
-    return None
+    return _raised(a, b, 1.0)
 
 
-def _raised(a: Quantity, b: Quantity) -> Quantity:
-    """A quantity raised by a ratio in dB; a linear one is multiplied."""
-    if a.unit.is_log:
-        return Quantity(a.value + b.value, a.unit)
-    factor = 20 if a.unit.kind is Kind.FIELD_LEVEL else 10
-    return Quantity(a.value * np.power(10.0, b.value / factor), a.unit)
-
-
-def _stepped(a: Quantity, b: Quantity, sign: float) -> Quantity:
-    """A level and a gain or a level under it; a temperature and a difference of temperatures."""
-    if b.unit.kind is Kind.RATIO_DENSITY:
-        assert b.unit.bandwidth_hz is not None
-        suffix = format_unit(b.unit).partition("/")[2]
-        return Quantity(a.value + sign * b.value, parse_unit(f"{format_unit(a.unit)}/{suffix}"))
-    if b.unit.is_log:
-        return Quantity(a.value + sign * b.value, a.unit)
-    step = converter(b.unit, a.unit, difference=True)
-    return Quantity(a.value + sign * step(b.value), a.unit)
-
-
-def _over_bandwidth(a: Quantity, b: Quantity, spectrum: Spectrum) -> Quantity:
-    """A density over a bandwidth in dBHz is a level, for noise-like signals."""
-    bandwidth = a.unit.bandwidth_hz or 1.0
-    level = parse_unit(format_unit(a.unit).rpartition("/")[0])
-    converter(a.unit, level, bandwidth_hz=1.0, spectrum=spectrum)  # refuses what is not noise-like
-    return Quantity(a.value + b.value - 10 * np.log10(bandwidth), level)
-
-
-def _without_bandwidth(a: Quantity, b: Quantity, spectrum: Spectrum) -> Quantity | None:
-    """level - density is a bandwidth in dBHz (carrier over noise density); level - dBHz is a noise-like density."""
-    if not (a.unit.is_log and b.unit.is_log) or a.unit.bandwidth_hz is not None:
+def _raised(a: Quantity, b: Quantity, sign: float) -> Quantity | None:
+    """``a`` raised or lowered by a plain ratio in dB; a linear level is multiplied or divided."""
+    if not _is_plain_ratio(b.unit):
         return None
-    if b.unit == DB_HERTZ and a.unit.kind is Kind.LEVEL:
-        density = parse_unit(f"{format_unit(a.unit)}/Hz")
-        converter(density, a.unit, bandwidth_hz=1.0, spectrum=spectrum)
-        return Quantity(a.value - b.value, density)
-    same = (a.unit.dimension, a.unit.gauge) == (b.unit.dimension, b.unit.gauge)
-    if same and b.unit.bandwidth_hz is not None:
-        whole = replace(b.unit, kind=a.unit.kind, bandwidth_hz=None)
-        per_hertz = b.value - 10 * np.log10(b.unit.bandwidth_hz)
-        return Quantity(_in(a, whole) - per_hertz, DB_HERTZ)
+    if a.unit.is_log:
+        return Quantity(a.value + sign * b.value, a.unit)
+    if a.unit.kind in _RAISED_BY_DB:
+        return Quantity(a.value * np.power(10.0, sign * b.value / _RAISED_BY_DB[a.unit.kind]), a.unit)
     return None
 
 
-def _linear_difference(a: Quantity, b: Quantity) -> Quantity:
+def _changed_by(a: Unit, b: Unit, spectrum: Spectrum) -> Unit | None:
+    """The unit of a + b for two logarithmic units of different kinds, or None where they have no sum."""
+    if not (a.is_log and b.is_log):
+        return None
+    if _takes_referred(a, b):
+        return a if b.bandwidth_hz is None else density_of(a, b.bandwidth_hz)
+    if a.bandwidth_hz is not None and b == DB_HERTZ:
+        converter(a, level_of(a), bandwidth_hz=1.0, spectrum=spectrum)  # refuses what is not noise-like
+        return level_of(a)
+    if a.kind is Kind.LEVEL and b == _ANTENNA_FACTOR and a.dimension in _FIELD_OF:
+        return _field_of(a)
+    return None
+
+
+def _left_after(a: Unit, b: Unit, spectrum: Spectrum) -> Unit | None:
+    """The unit of a - b for two logarithmic units of different kinds, or None where the plain rules apply."""
+    if not (a.is_log and b.is_log):
+        return None
+    if _takes_referred(a, b) and b.bandwidth_hz is None:
+        return a
+    if a.kind is Kind.RATIO and a.gauge in ("", "i") and b == _DB_KELVIN:
+        return _MERIT
+    if a.bandwidth_hz is None and b == DB_HERTZ and a != DB_HERTZ:
+        density = density_of(a, 1.0)
+        converter(density, a, bandwidth_hz=1.0, spectrum=spectrum)
+        return density
+    if a.bandwidth_hz is None and b.bandwidth_hz is not None and a == level_of(b):
+        return DB_HERTZ
+    if a.kind is Kind.FIELD_LEVEL and b == _ANTENNA_FACTOR:
+        return parse_unit(a.symbol.removesuffix("/m"))
+    if a.kind is Kind.FIELD_LEVEL and b.dimension in _FIELD_OF and a == _field_of(b):
+        return _ANTENNA_FACTOR
+    return None
+
+
+def _per_hertz(quantity: Quantity) -> Any:
+    """The value of a density in a bandwidth of 1 Hz; the value of anything else as it is."""
+    bandwidth = quantity.unit.bandwidth_hz
+    return quantity.value - 10 * np.log10(bandwidth) if bandwidth and bandwidth != 1 else quantity.value
+
+
+def _field_of(level: Unit) -> Unit:
+    return replace(
+        level, symbol=f"{level.symbol}/m", kind=Kind.FIELD_LEVEL, dimension=_FIELD_OF[level.dimension]
+    )
+
+
+def _stepped(temperature: Quantity, step: Quantity, sign: float) -> Quantity:
+    size = converter(step.unit, temperature.unit, difference=True)
+    return Quantity(temperature.value + sign * size(step.value), temperature.unit)
+
+
+def _difference(a: Quantity, b: Quantity) -> Quantity:
+    """Two values of one kind: counted in the unit of the first, then in the unit that a difference has."""
     unit = tolerance_unit(a.unit)
-    size = converter(a.unit, unit, difference=True)
-    return Quantity(size(a.value - _in(b, a.unit)), unit)
+    difference: Any = a.value - _in(b, a.unit)
+    return Quantity(
+        difference if a.unit.is_log else converter(a.unit, unit, difference=True)(difference), unit
+    )
 
 
 def _in(quantity: Quantity, unit: Unit) -> Any:
@@ -144,20 +174,16 @@ def _is_plain_ratio(unit: Unit) -> bool:
 
 def _takes_referred(level: Unit, ratio: Unit) -> bool:
     """dBm + dBi, dBm + dBc, dBm + dBc/Hz: a level and something that is relative to it."""
-    if not level.is_log or ratio.gauge not in _REFERRED:
+    if ratio.gauge not in _REFERRED or level.gauge:
         return False
     if ratio.kind is Kind.RATIO_DENSITY:
-        return level.kind is Kind.LEVEL and ratio.gauge in ("c", "r")
+        return level.kind is Kind.LEVEL
     return ratio.kind is Kind.RATIO and level.kind in (Kind.LEVEL, Kind.LEVEL_DENSITY)
 
 
 def _is_step(temperature: Unit, step: Unit) -> bool:
-    return (
-        temperature.is_absolute_temperature
-        and step.dimension == "temperature"
-        and not step.is_log
-        and not step.is_absolute_temperature
-    )
+    is_difference = step.dimension == "temperature" and not (step.is_log or step.is_absolute_temperature)
+    return temperature.is_absolute_temperature and is_difference
 
 
 def _adds_plainly(a: Unit, b: Unit) -> bool:
@@ -167,14 +193,15 @@ def _adds_plainly(a: Unit, b: Unit) -> bool:
 
 
 def _why_no_sum(a: Unit, b: Unit) -> str:
+    kinds = {a.kind, b.kind}
     if a.is_absolute_temperature and b.is_absolute_temperature:
         return "two temperatures have no sum: write the difference in K"
-    if a.kind is Kind.RATIO and b.kind is Kind.RATIO and a.is_log != b.is_log:
+    if kinds == {Kind.RATIO} and a.is_log != b.is_log:
         return "whether the linear ratio is 10·log or 20·log is missing: convert it first"
-    if a.kind is Kind.RATIO and b.kind is Kind.RATIO:
+    if kinds == {Kind.RATIO}:
         return "only a plain ratio in dB can be added to a ratio that is relative to something"
-    if a.dimension == b.dimension and not {a.kind, b.kind} & {Kind.PHYSICAL, Kind.RATIO}:
+    if a.dimension == b.dimension and not kinds & {Kind.PHYSICAL, Kind.RATIO}:
         return "a power sum must be asked for"
-    if {a.kind, b.kind} & {Kind.DB_PER_LENGTH, Kind.DB_SLOPE}:
+    if kinds & {Kind.DB_PER_LENGTH, Kind.DB_SLOPE}:
         return "the length or span of the slope is missing"
     return "they measure different things"

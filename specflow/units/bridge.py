@@ -10,6 +10,7 @@ import math
 from dataclasses import dataclass, replace
 
 from specflow.errors import UnitError
+from specflow.units.density import hertz
 from specflow.units.kinds import Kind, Spectrum
 from specflow.units.refusal import no_conversion
 from specflow.units.table import AMPLITUDES, DIPOLE_OVER_ISOTROPIC_DB
@@ -26,13 +27,6 @@ class Bridge:
     shift_db: float = 0.0
     notes: tuple[str, ...] = ()
 
-
-_WITHOUT_BANDWIDTH = {
-    Kind.LEVEL_DENSITY: Kind.LEVEL,
-    Kind.FIELD_DENSITY: Kind.FIELD_LEVEL,
-    Kind.POWER_FLUX_DENSITY: Kind.POWER_FLUX,
-    Kind.RATIO_DENSITY: Kind.RATIO,
-}
 
 # y = x ** power · R ** exponent, for the pairs of dimensions that an impedance connects.
 _THROUGH_IMPEDANCE = {
@@ -76,12 +70,9 @@ def _through_impedance(source: Unit, target: Unit, impedance_ohm: float | None) 
         return Bridge()
     fields = {source.dimension, target.dimension} & {"electric field", "magnetic field", "power flux"}
     if impedance_ohm is None:
-        piece = (
-            f"the wave impedance is missing; in free space and the far field it is {FREE_SPACE_OHM:.2f} Ω, to be asked for"
-            if fields
-            else "the impedance is missing"
-        )
-        raise UnitError(f"{source} cannot be converted to {target}", hint=piece)
+        free = f"the wave impedance is missing: {FREE_SPACE_OHM:.2f} Ω in free space and the far field, to be asked for"
+        hint = free if fields else "the impedance is missing"
+        raise UnitError(f"{source} cannot be converted to {target}", hint=hint)
     peaks = [unit for unit in (source, target) if unit.measure in ("p-p", "peak")]
     if peaks:
         hint = f"{peaks[0]} is not an rms value: the wave form is missing"
@@ -97,9 +88,8 @@ def _through_bandwidth(
 ) -> Bridge:
     """Another reference bandwidth, or a density integrated over a bandwidth: for noise-like signals only."""
     refused = f"{source} cannot be converted to {target}"
-    if source.bandwidth_hz is None or target.bandwidth_hz is None:
-        if bandwidth_hz is None:
-            raise UnitError(refused, hint="the bandwidth is missing, and that the signal is noise-like in it")
+    if bandwidth_hz is None and None in (source.bandwidth_hz, target.bandwidth_hz):
+        raise UnitError(refused, hint="the bandwidth is missing, and that the signal is noise-like in it")
     if spectrum is Spectrum.DISCRETE:
         hint = "a discrete line does not scale with bandwidth: compare its level as it is"
         raise UnitError(refused, hint=hint)
@@ -109,7 +99,7 @@ def _through_bandwidth(
     before, after = (unit.bandwidth_hz or bandwidth_hz or 1.0 for unit in (source, target))
     ratio = after / before
     factor = math.sqrt(ratio) if target.dimension in AMPLITUDES else ratio
-    note = f"noise-like, {_hertz(before)} to {_hertz(after)} is {10 * math.log10(ratio):+.4g} dB"
+    note = f"noise-like, {hertz(before)} to {hertz(after)} is {10 * math.log10(ratio):+.4g} dB"
     return replace(link, factor=link.factor * factor, notes=(*link.notes, note))
 
 
@@ -119,10 +109,3 @@ def _between_gauges(source: Unit, target: Unit, link: Bridge) -> Bridge:
         note = f"a half-wave dipole has {DIPOLE_OVER_ISOTROPIC_DB} dBi"
         return replace(link, shift_db=shift, notes=(*link.notes, note))
     raise no_conversion(source, target)
-
-
-def _hertz(value: float) -> str:
-    for size, symbol in ((1e9, "GHz"), (1e6, "MHz"), (1e3, "kHz")):
-        if value >= size:
-            return f"{value / size:.9g} {symbol}"
-    return f"{value:.9g} Hz"

@@ -7,10 +7,11 @@ from fractions import Fraction
 
 from specflow.errors import UnitError
 from specflow.units import dimension, foreign, names
-from specflow.units.factors import Factor
+from specflow.units.density import IN_BANDWIDTH, density_of
+from specflow.units.factors import Factor, factorise
 from specflow.units.kinds import Kind
 from specflow.units.names import Name
-from specflow.units.table import AMBIGUOUS, LogRow
+from specflow.units.table import AMBIGUOUS, ANTENNA_FACTOR, AREA, MERIT, LogRow
 from specflow.units.unit import Unit
 
 _KIND_OF_DIMENSION = {
@@ -21,11 +22,14 @@ _KIND_OF_DIMENSION = {
     "magnetic field": Kind.FIELD_LEVEL,
     "dB per length": Kind.DB_PER_LENGTH,
 }
-_KIND_IN_BANDWIDTH = {
-    Kind.LEVEL: Kind.LEVEL_DENSITY,
-    Kind.POWER_FLUX: Kind.POWER_FLUX_DENSITY,
-    Kind.FIELD_LEVEL: Kind.FIELD_DENSITY,
-    Kind.RATIO: Kind.RATIO_DENSITY,
+_LARGEST_EXPONENT = 12
+
+
+# dB(x) for the few x that are not simply a level: what stands in the brackets, and its exponent.
+_REFERRED = {
+    ("K", Fraction(-1)): MERIT,
+    ("m", Fraction(-1)): ANTENNA_FACTOR,
+    ("m", Fraction(2)): AREA,
 }
 
 
@@ -55,7 +59,7 @@ def composed(factors: list[Factor]) -> Unit:
         return _over(row, [_part(factor) for factor in factors[1:]])
     parts = [_part(factor) for factor in factors]
     if row is not None and _is_merit(parts):
-        return _merit()
+        return logarithmic(MERIT)
     return _product(parts)
 
 
@@ -63,10 +67,9 @@ def logarithmic(row: LogRow) -> Unit:
     """The unit of one row of the logarithmic table."""
     if not row.reference:
         return Unit(row.symbol, row.kind, "ratio", is_log=True, gauge=row.gauge)
-    scale, exponents = (Fraction(1), dimension.read("m^2")) if row.reference == "m^2" else _reference(row.reference)
-    return Unit(
-        row.symbol, row.kind, dimension.name(exponents), float(scale), is_log=True, log_factor=row.log_factor
-    )
+    scale, exponents = _multiplied([_part(factor) for factor in factorise(row.reference)])
+    name = row.dimension or dimension.name(exponents)
+    return Unit(row.symbol, row.kind, name, float(scale), is_log=True, log_factor=row.log_factor)
 
 
 def linear(name: Name) -> Unit:
@@ -84,14 +87,12 @@ def measured(unit: Unit, measure: str) -> Unit:
 
 def referred(factors: list[Factor]) -> Unit:
     """The unit written as dB(reference), the notation of ITU-R V.574: dB(W/m²), dB(µV/m), dB(m) for dB(1 mW)."""
-    if factors == [Factor("m")]:
-        return composed([Factor("dBm")])
-    if factors in ([Factor("K", Fraction(-1))], [Factor("", Fraction(1)), Factor("K", Fraction(-1))]):
-        return _merit()
+    factors = factors[1:] if len(factors) > 1 and factors[0] == Factor("") else factors
+    special = _REFERRED.get((factors[0].name, factors[0].exponent)) if len(factors) == 1 else None
+    if special is not None:
+        return logarithmic(special)
     head, *rest = factors
-    if rest and head.exponent == 1 and head.coefficient == 1:
-        return composed([Factor("dBm" if head.name == "mW" else f"dB{head.name}"), *rest])
-    return composed([Factor("dBm" if head.name == "mW" else f"dB{head.name}", head.exponent, head.coefficient)])
+    return composed([replace(head, name=f"dB{head.name}"), *rest])
 
 
 def _over(row: LogRow, parts: list[_Part]) -> Unit:
@@ -100,7 +101,7 @@ def _over(row: LogRow, parts: list[_Part]) -> Unit:
     bandwidths = [part for part in parts if part.dimension == "frequency" and part.exponent == -1]
     others = [part for part in parts if part not in bandwidths]
     if unit.gauge == "i" and not bandwidths and _is_merit([_DECIBEL, *others]):
-        return _merit()
+        return logarithmic(MERIT)
     if others:
         unit = _per_space(unit, others)
     return _in_bandwidth(unit, bandwidths) if bandwidths else unit
@@ -116,18 +117,20 @@ def _per_space(unit: Unit, parts: list[_Part]) -> Unit:
     elif unit.kind is Kind.LEVEL and field and over == "m^-1":
         kind, name = Kind.FIELD_LEVEL, field
     else:
-        raise UnitError(f"'{_symbol(unit.symbol, parts)}' is not a quantity: {unit.symbol} is not counted per {over}")
+        raise UnitError(
+            f"'{_symbol(unit.symbol, parts)}' is not a quantity: {unit.symbol} is not counted per {over}"
+        )
     symbol = _symbol(unit.symbol, parts)
-    return replace(unit, symbol=symbol, kind=kind, dimension=name, scale=float(Fraction(unit.scale) * scale))
+    return replace(
+        unit, symbol=symbol, kind=kind, dimension=name, scale=_size(Fraction(repr(unit.scale)) * scale)
+    )
 
 
 def _in_bandwidth(unit: Unit, bandwidths: list[_Part]) -> Unit:
     """A level, flux or ratio in its reference bandwidth."""
-    symbol = _symbol(unit.symbol, bandwidths)
-    kind = _KIND_IN_BANDWIDTH.get(unit.kind)
-    if kind is None or len(bandwidths) > 1 or unit.gauge not in ("", "c", "r", "FS"):
-        raise UnitError(f"'{symbol}' is not a quantity: {unit.symbol} is not counted per bandwidth")
-    return replace(unit, symbol=symbol, kind=kind, bandwidth_hz=float(bandwidths[0].scale))
+    if len(bandwidths) > 1:
+        raise UnitError(f"'{_symbol(unit.symbol, bandwidths)}' has two bandwidths")
+    return density_of(unit, _size(bandwidths[0].scale))
 
 
 def _product(parts: list[_Part]) -> Unit:
@@ -136,9 +139,9 @@ def _product(parts: list[_Part]) -> Unit:
     others = [part for part in parts if part not in bandwidths]
     if others and bandwidths:
         rest = _plain_product(others)
-        if rest.kind in _KIND_IN_BANDWIDTH and rest.kind is not Kind.RATIO:
+        if rest.kind in IN_BANDWIDTH and rest.kind is not Kind.RATIO:
             return _in_bandwidth(rest, bandwidths)
-    if [part.written for part in parts if part.is_decibel] and _is_decibel_per_hertz(parts):
+    if _is_decibel_per_hertz(parts):
         raise UnitError("unit 'dB/Hz' has more than one meaning", hint=AMBIGUOUS["dB/Hz"])
     return _plain_product(parts)
 
@@ -148,9 +151,11 @@ def _plain_product(parts: list[_Part]) -> Unit:
     name = dimension.name(exponents)
     symbol = _symbol("", parts)
     if parts[0].written[0].isdigit() and parts[0].exponent > 0 and parts[0].written != "1":
-        raise UnitError(f"'{symbol}' is a value with a unit, not a unit")
+        raise UnitError(
+            f"'{symbol}' is a value with a unit, not a unit", hint="the number belongs to the value"
+        )
     kind = Kind.DB_SLOPE if "dB" in exponents else Kind.PHYSICAL
-    return Unit(symbol, _KIND_OF_DIMENSION.get(name, kind), name, float(scale))
+    return Unit(symbol, _KIND_OF_DIMENSION.get(name, kind), name, _size(scale))
 
 
 def _is_decibel_per_hertz(parts: list[_Part]) -> bool:
@@ -158,20 +163,22 @@ def _is_decibel_per_hertz(parts: list[_Part]) -> bool:
 
 
 def _is_merit(parts: list[_Part]) -> bool:
-    return len(parts) == 2 and parts[0].is_decibel and (parts[1].written, parts[1].exponent) == ("K", -1)
-
-
-def _merit() -> Unit:
-    return Unit("dB/K", Kind.MERIT, "1/temperature", is_log=True, log_factor=10)
+    return len(parts) == 2 and parts[0].is_decibel and parts[1].written == "K" and parts[1].exponent == -1
 
 
 _DECIBEL = _Part("dB", Fraction(1), Fraction(1), {"dB": Fraction(1)}, is_decibel=True)
 
 
 def _part(factor: Factor) -> _Part:
+    if not factor.coefficient or abs(factor.exponent) > _LARGEST_EXPONENT:
+        raise UnitError(
+            f"'{_number(factor.coefficient)} {factor.name}^{factor.exponent}' is no part of a unit"
+        )
     if factor.name.casefold() == "db":
         return replace(_DECIBEL, exponent=factor.exponent)
     if not factor.name:
+        if factor.coefficient != 1:
+            raise UnitError(f"the number {_number(factor.coefficient)} in a unit belongs to no part of it")
         return _Part(_number(factor.coefficient), factor.exponent, factor.coefficient, {})
     name = _named(factor.name)
     written = name.symbol if factor.coefficient == 1 else f"{_number(factor.coefficient)} {name.symbol}"
@@ -190,11 +197,6 @@ def _unknown(text: str) -> UnitError:
     return UnitError(f"unit '{text}' is not known", hint=f"nearest: {', '.join(close)}" if close else "")
 
 
-def _reference(symbol: str) -> tuple[Fraction, dimension.Exponents]:
-    name = _named(symbol)
-    return name.scale, dict(name.exponents)
-
-
 def _multiplied(parts: list[_Part]) -> tuple[Fraction, dimension.Exponents]:
     scale: Fraction = Fraction(1)
     exponents: dimension.Exponents = {}
@@ -209,6 +211,17 @@ def _power(base: Fraction, exponent: Fraction) -> Fraction:
     return base**exponent.numerator if exponent.denominator == 1 else Fraction(float(base) ** float(exponent))
 
 
+def _size(scale: Fraction) -> float:
+    """The scale as a float; refuses what a float cannot hold."""
+    try:
+        size = float(scale)
+    except OverflowError:
+        size = 0.0
+    if not size:
+        raise UnitError("a unit of this size cannot be counted in")
+    return size
+
+
 def _number(value: Fraction) -> str:
     return str(value.numerator) if value.denominator == 1 else f"{float(value):.15g}"
 
@@ -218,7 +231,8 @@ def _symbol(head: str, parts: list[_Part]) -> str:
     merged: dict[str, Fraction] = {}
     for part in parts:
         merged[part.written] = merged.get(part.written, Fraction(0)) + part.exponent
-    above = [_raised(written, exponent) for written, exponent in merged.items() if exponent > 0 and written != "1"]
+    merged.pop("1", None)
+    above = [_raised(written, exponent) for written, exponent in merged.items() if exponent > 0]
     below = [_raised(written, -exponent) for written, exponent in merged.items() if exponent < 0]
     return "/".join([head or "·".join(above) or "1", *below])
 
@@ -227,7 +241,5 @@ def _raised(written: str, exponent: Fraction) -> str:
     if exponent == Fraction(1, 2):
         return f"√{written}"
     signs = {Fraction(1): "", Fraction(2): "²", Fraction(3): "³"}
-    written = f"({written})" if " " in written and exponent != 1 else written
-    return written + signs.get(exponent, f"^{exponent}" if exponent.denominator == 1 else f"^({exponent})")
-
-
+    written = f"({written})" if exponent != 1 and not written.isalpha() else written
+    return written + signs.get(exponent, f"^({exponent})")

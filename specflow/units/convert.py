@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import lru_cache
 from typing import Any, overload
 
@@ -18,6 +18,7 @@ from numpy.typing import NDArray
 from specflow.errors import UnitError
 from specflow.units import bridge
 from specflow.units.bridge import Bridge
+from specflow.units.density import level_of
 from specflow.units.kinds import Spectrum
 from specflow.units.refusal import no_conversion
 from specflow.units.unit import Unit
@@ -101,6 +102,19 @@ def compatible(a: Unit, b: Unit) -> bool:
     return True
 
 
+def bandwidth_bounds(
+    values: Array, source: Unit, target: Unit, *, bandwidth_hz: float | None = None
+) -> tuple[Array, Array]:
+    """Lower and upper value in ``target`` of a signal in ``source`` whose spectrum is not known.
+
+    One end is what a discrete line would read in the other bandwidth (the same level), the other end what noise-like
+    power would. They hold where the signal does not rise elsewhere within the wider bandwidth.
+    """
+    line = converter(level_of(source), level_of(target))(values)
+    noise = converter(source, target, bandwidth_hz=bandwidth_hz, spectrum=Spectrum.NOISE_LIKE)(values)
+    return np.minimum(line, noise), np.maximum(line, noise)
+
+
 @lru_cache(maxsize=2048)
 def resolved(
     source: Unit,
@@ -117,7 +131,15 @@ def resolved(
             f"{source} cannot be converted to {target}",
             hint=f"{source.measure} and {target.measure} are different statistics: the wave form is missing",
         )
+    if difference and source.is_log and target.is_log:
+        spectrum, bandwidth_hz = (
+            Spectrum.NOISE_LIKE,
+            bandwidth_hz or 1.0,
+        )  # a constant number of dB, which cancels
     link = bridge.between(source, target, bandwidth_hz, spectrum, impedance_ohm)
+    if source.measure != target.measure:
+        note = f"only one of them says {source.measure or target.measure}: taken to be the same statistic"
+        link = replace(link, notes=(*link.notes, note))
     if difference:
         return _of_difference(source, target, link)
     if source.is_log and target.is_log:
@@ -159,7 +181,9 @@ def _across(source: Unit, target: Unit, link: Bridge, log_factor: int | None) ->
     decibel = source if source.is_log else target
     factor = decibel.log_factor or log_factor
     if factor is None:
-        hint = "whether 10·log or 20·log is meant comes from the parameter: a power ratio or an amplitude ratio"
+        hint = (
+            "whether 10·log (a power ratio) or 20·log (an amplitude ratio) is meant comes from the parameter"
+        )
         raise UnitError(f"{source} cannot be converted to {target}", hint=hint)
     if link.shift_db:
         raise no_conversion(source, target)
@@ -176,7 +200,7 @@ def _logarithm(source: Unit, target: Unit, link: Bridge, factor: int) -> Convert
     def formula(x: Any) -> Any:
         magnitude = x + zero if zero else x
         if np.any(magnitude < 0):
-            raise UnitError(f"a negative value in {source} has no value in {target}", hint="check its sign and unit")
+            raise UnitError(f"a negative value in {source} has no value in {target}", hint="check the sign")
         with np.errstate(divide="ignore"):
             return slope * np.log10(magnitude) + shift
 
@@ -216,7 +240,7 @@ def _linear(
 ) -> Converter:
     if factor == 1 and divisor == 1 and zero == 0:
         return _identity(source, target, *notes)
-    text = "x" if factor == divisor == 1 else f"x · {_figure(factor)}" if divisor == 1 else f"x / {_figure(divisor)}"
+    text = f"x / {_figure(divisor)}" if divisor != 1 else "x" if factor == 1 else f"x · {_figure(factor)}"
     if zero:
         text += f" {'-' if zero < 0 else '+'} {_figure(abs(zero))}"
     words = _words(source, target, text, notes)
@@ -251,5 +275,3 @@ def _figure(value: float) -> str:
 
 def _words(source: Unit, target: Unit, formula: str, notes: list[str] | tuple[str, ...]) -> str:
     return "; ".join([f"{source} to {target}: {formula}", *notes])
-
-

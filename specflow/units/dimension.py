@@ -1,7 +1,7 @@
 """Dimensions as products of base quantities, and the names engineers give to the usual ones.
 
-The bases are those of the SI, plus the ones that radio engineering must not let cancel silently: the angle, the bit, the
-symbol, the sample, the resource block, the decade of frequency and the decibel itself (as in dB/m or deg/dB).
+The bases are those of the SI, plus the ones that radio engineering must not let cancel silently: the angle, the bit,
+the symbol, the sample, the resource block, the decade of frequency and the decibel itself (as in dB/m or deg/dB).
 """
 
 from __future__ import annotations

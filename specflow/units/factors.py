@@ -9,7 +9,7 @@ from fractions import Fraction
 from specflow.errors import UnitError
 
 _TOKEN = re.compile(
-    r"\s*(?:(?P<number>\d+(?:\.\d+)?(?:[eE][+-]?\d+)?)"
+    r"\s*(?:(?P<number>\d+(?:\.\d+)?(?:[eE][+-]?\d{1,2})?)"
     r"|(?P<name>[^\W\d_]+|[%‰°Δ][^\W\d_]*)"
     r"|(?P<power>\^\s*-?\d+|\^\s*\(\s*-?\d+(?:/\d+)?\s*\)|-\d+)"
     r"|(?P<sign>[*/()√]))"
@@ -30,8 +30,9 @@ def factorise(text: str) -> list[Factor]:
 
     Raises UnitError when the text is not a product or quotient of names.
     """
-    factors, end = _product(_tokens(text), 0, text)
-    if end != len(_tokens(text)):
+    tokens = _tokens(text)
+    factors, end = _product(tokens, 0, text)
+    if end != len(tokens):
         raise UnitError(f"unit '{text}' cannot be read: a bracket does not close")
     return factors
 
@@ -58,7 +59,7 @@ def _product(tokens: list[tuple[str, str]], place: int, text: str) -> tuple[list
         if place >= len(tokens) or tokens[place][1] == ")":
             return factors, place
         if tokens[place][1] not in ("*", "/"):
-            raise UnitError(f"unit '{text}' cannot be read: '{tokens[place][1]}' stands where * or / is expected")
+            raise UnitError(f"unit '{text}' cannot be read: '{tokens[place][1]}' stands in the wrong place")
         sign = -1 if tokens[place][1] == "/" else 1
         place += 1
 
@@ -87,7 +88,8 @@ def _bracket_or_name(tokens: list[tuple[str, str]], place: int, text: str) -> tu
         if follows[0] == "name":
             return [Factor(follows[1], coefficient=Fraction(word))], place + 2
         return [Factor("", coefficient=Fraction(word))], place + 1
-    raise UnitError(f"unit '{text}' cannot be read: a unit is missing" + (f" before '{word}'" if word else ""))
+    before = f" before '{word}'" if word else ""
+    raise UnitError(f"unit '{text}' cannot be read: a unit is missing{before}")
 
 
 def _exponent(tokens: list[tuple[str, str]], place: int) -> tuple[Fraction, int]:

@@ -51,8 +51,10 @@ def _converted(text: str, name: str) -> Name | None:
     is_multiple = abs(doubled.magnitude - 2 * base.magnitude) < 1e-9 * abs(base.magnitude)
     if not dimensions or not is_multiple or not set(dimensions) <= set(_BASES):
         return None
-    exponents = tuple((_BASES[key], Fraction(power).limit_denominator(12)) for key, power in dimensions.items())
-    return Name(text, Fraction(str(base.magnitude)), Fraction(0), exponents)
+    exponents = {_BASES[key]: Fraction(power) for key, power in dimensions.items()}
+    if any(exponent.denominator != 1 for exponent in exponents.values()):
+        return None  # a unit of the CGS systems, which has no place among SI quantities
+    return Name(text, Fraction(str(base.magnitude)), Fraction(0), tuple(exponents.items()))
 
 
 @cache

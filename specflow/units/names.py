@@ -16,6 +16,9 @@ from specflow.errors import UnitError
 from specflow.units import dimension
 from specflow.units.table import AMBIGUOUS, LINEAR, LOGARITHMIC, PREFIXES, LinearRow, LogRow
 
+# Two letters say too little once their case is gone: NF is a noise figure, not a nanofarad.
+_SHORTEST_FORGIVEN = 3
+
 
 @dataclass(frozen=True, slots=True)
 class Name:
@@ -54,9 +57,10 @@ def nearest(text: str) -> list[str]:
 
 
 def _forgiving_case(text: str) -> Name | None:
-    if len(text) < 2:
+    if len(text) < _SHORTEST_FORGIVEN:
         return None
-    found = {name.symbol: name for name in _by_folded_case().get(text.casefold(), ()) if _same_mega(name, text)}
+    alike = _by_folded_case().get(text.casefold(), ())
+    found = {name.symbol: name for name in alike if _same_mega(name, text)}
     return next(iter(found.values())) if len(found) == 1 else None
 
 

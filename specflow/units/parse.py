@@ -15,12 +15,13 @@ from specflow.units.unit import Unit
 _LONGEST = 80
 _MEASURES = {"rms": "rms", "pp": "p-p", "pkpk": "p-p", "peaktopeak": "p-p", "peak": "peak", "pk": "peak"}
 _MEASURE = re.compile(
-    r"^(?P<unit>.*?[^\s_(\[,])[\s_,]*[(\[]?(?P<measure>rms|p-?p|pk-?pk|peak[- ]to[- ]peak|peak|pk)[)\]]?$", re.IGNORECASE
+    r"^(?P<unit>.*?[^\s_(\[,])[\s_,]*[(\[]?(?P<measure>rms|p-?p|pk-?pk|peak[- ]to[- ]peak|peak|pk)[)\]]?$",
+    re.IGNORECASE,
 )
 _DEGREES = re.compile(r"(?:deg(?:ree)?s?\.? ?|° )([CFK])\b")
 _IN_BANDWIDTH = re.compile(r" in (?:an? )?(?=\d)")
 _BANDWIDTH_WORD = re.compile(r"(?<=Hz)\)? ?(?:BW|RBW|MBW|[Bb]andwidth)\)?$")
-_REFERRED = re.compile(r"^dB ?\( ?(?:1 ?(?=[^\W\d]|/))?(?P<reference>.+)\)$", re.IGNORECASE)
+_REFERRED = re.compile(r"^dB ?\((?P<reference>.+)\)$", re.IGNORECASE)
 
 
 def parse_unit(text: str) -> Unit:

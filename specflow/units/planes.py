@@ -5,7 +5,7 @@ from __future__ import annotations
 _MISSING = {
     frozenset({"EIRP", "TRP"}): "the directivity, or the pattern over the sphere, is missing",
     frozenset({"EIS", "TIS"}): "the directivity, or the pattern over the sphere, is missing",
-    frozenset({"EIRP", "ERP"}): "the same signal has an EIRP 2.15 dB above its ERP: say that it is to be restated",
+    frozenset({"EIRP", "ERP"}): "one signal has an EIRP 2.15 dB above its ERP: say that it is restated",
     frozenset({"EIRP", "CONDUCTED"}): "the antenna gain, and the loss up to it, are missing",
     frozenset({"ERP", "CONDUCTED"}): "the antenna gain, and the loss up to it, are missing",
     frozenset({"TRP", "CONDUCTED"}): "the efficiency of the antenna, and the loss up to it, are missing",

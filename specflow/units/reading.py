@@ -12,7 +12,9 @@ from dataclasses import dataclass
 
 from specflow.errors import UnitError
 from specflow.units.number import parse_number
+from specflow.units.parse import parse_unit
 from specflow.units.spelling import repaired
+from specflow.units.unit import Unit
 
 
 @dataclass(frozen=True, slots=True)
@@ -38,20 +40,24 @@ class Blank:
 
 
 _BLANKS = {
-    "nothing written": ("", "-", "--", "---", "—", "——", "―", ".", "...", "…", "?", "none", "null", "nil", "blank", "empty"),
-    "not applicable": ("n/a", "na", "n.a.", "n.a", "not applicable", "n/ap", "#n/a", "#n/a n/a"),
-    "not measured": ("n.m.", "nm", "n/m", "n.m", "not measured", "not tested", "n.t.", "n/t", "skipped"),
-    "not available": ("not available", "n/av", "missing", "no data"),
-    "overload of the instrument": ("ol", "o.l.", "0l", "ovl", "ovld", "overload", "overflow", "over range", "over"),
-    "invalid at the instrument": ("uncal", "invalid", "unlock", "unlocked", "under range", "underflow", "err", "error"),
-    "not a number": ("nan", "#num!", "inf", "-inf", "+inf", "infinity", "-infinity", "1.#inf", "-1.#ind", "1.#qnan"),
-    "to be determined": ("tbd", "tba", "tbc", "ffs", "tbs"),
-    "error in the cell": ("#div/0!", "#value!", "#ref!", "#name?", "#null!", "#getting_data", "#spill!", "#calc!"),
+    "nothing written": "| - | -- | --- | — | —— | ― | . | ... | … | ? | none | null | nil | blank | empty",
+    "not applicable": "n/a | na | n.a. | n.a | not applicable | n/ap | #n/a | #n/a n/a",
+    "not measured": "n.m. | nm | n/m | n.m | not measured | not tested | n.t. | n/t | skipped",
+    "not available": "not available | n/av | missing | no data",
+    "overload of the instrument": "ol | o.l. | 0l | ovl | ovld | overload | overflow | over range | over",
+    "invalid at the instrument": "uncal | invalid | unlock | unlocked | under range | underflow | err | error",
+    "not a number": "nan | #num! | inf | -inf | +inf | infinity | -infinity | 1.#inf | -1.#ind | 1.#qnan",
+    "to be determined": "tbd | tba | tbc | ffs | tbs",
+    "error in the cell": "#div/0! | #value! | #ref! | #name? | #null! | #getting_data | #spill! | #calc!",
 }
-_REASONS = {word: reason for reason, words in _BLANKS.items() for word in words}
+_REASONS = {word.strip(): reason for reason, words in _BLANKS.items() for word in words.split("|")}
 
 _BOUND = re.compile(r"^(?P<sign><=|>=|=<|=>|≤|≥|⩽|⩾|<|>)\s*(?P<number>.+)$")
 _RANGE = re.compile(r"^(?P<lo>.*\d)\s*(?:\.\.+|…| to )\s*(?P<hi>[-+]?[\d.,].*)$")
+_WITH_UNIT = re.compile(
+    r"^(?P<number>(?:[<>=≤≥⩽⩾]+ ?)?[+-]? ?(?:\d{1,3}(?:[ '’]\d{3})+(?!\d)(?:[.,]\d+)?|[\d.,]*\d(?:[eE][+-]?\d+)?))"
+    r" ?(?P<unit>[^\W\d]|[%‰°].*|[^\W\d].+)$"
+)
 _SCPI_NOT_A_NUMBER = 9.9e37  # SCPI-1999 volume 1, 7.2.1: 9.9E37 is infinity, 9.91E37 is not-a-number
 _UNSURE = (
     ("±", "its uncertainty belongs in a column of its own"),
@@ -82,6 +88,19 @@ def parse_reading(text: str, *, decimal_comma: bool | None = None) -> Reading | 
     if between:
         return _between(between["lo"], between["hi"], text, decimal_comma)
     return _point(plain, text, decimal_comma)
+
+
+def parse_reading_with_unit(
+    text: str, *, decimal_comma: bool | None = None
+) -> tuple[Reading | Blank, Unit | None]:
+    """Read a cell that may carry its unit: "<-90 dBm", "> 60dB", "3.2"; the unit is None where none is written."""
+    plain = repaired(text)
+    found = _WITH_UNIT.match(plain)
+    if plain.lower() in _REASONS or found is None:
+        return parse_reading(text, decimal_comma=decimal_comma), None
+    reading = parse_reading(found["number"], decimal_comma=decimal_comma)
+    unit = parse_unit(found["unit"])
+    return Reading(reading.lo, reading.hi, text) if isinstance(reading, Reading) else reading, unit
 
 
 def _between(lo: str, hi: str, text: str, decimal_comma: bool | None) -> Reading:

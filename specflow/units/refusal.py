@@ -37,7 +37,7 @@ def missing(source: Unit, target: Unit) -> str:
         found = _between_kinds(left, right) or _between_dimensions(left, right)
         if found:
             return found
-    return f"{source} is {_article(source)}, {target} is {_article(target)}: no relation between them is known"
+    return f"{source} is {_article(source)}, {target} is {_article(target)}: nothing relates the two"
 
 
 def _article(unit: Unit) -> str:
@@ -94,9 +94,9 @@ def _from_ratio_density(density: Unit, other: Unit) -> str:
 
 _DIMENSIONS = {
     ("ratio", "frequency"): "the reference frequency is missing (a relative frequency is a part of it)",
-    ("ratio", "temperature"): "noise figure and noise temperature are two parameters: their relation is asked for by name",
+    ("ratio", "temperature"): "noise figure and noise temperature are two parameters with a relation",
     ("angle", "time"): "the frequency is missing",
-    ("frequency", "length"): "the propagation velocity is missing (a wavelength is a relation, not a conversion)",
+    ("frequency", "length"): "the velocity is missing (a wavelength is a relation, not a conversion)",
     ("frequency", "time"): "a period is a relation, not a conversion",
     ("resource blocks", "frequency"): "the subcarrier spacing is missing",
     ("resource blocks", "ratio"): "the number of resource blocks that makes the whole is missing",
@@ -109,5 +109,6 @@ _DIMENSIONS = {
 
 def _between_dimensions(left: Unit, right: Unit) -> str:
     if left.kind is Kind.RATIO and right.kind is Kind.PHYSICAL and not left.is_log:
-        return _DIMENSIONS.get(("ratio", right.dimension), f"the {right.dimension} that makes the whole is missing")
+        whole = f"the {right.dimension} that makes the whole is missing"
+        return _DIMENSIONS.get(("ratio", right.dimension), whole)
     return _DIMENSIONS.get((left.dimension, right.dimension), "")

@@ -40,7 +40,7 @@ def repaired(text: str) -> str:
 
 
 def unit_spelling(text: str) -> str:
-    """Bring the text of a unit to plain letters: m² as m2, both micro signs as µ, "u" for micro is left to the table."""
+    """Bring the text of a unit to plain signs: m² as m2, both micro signs as µ, every product sign as *."""
     text = unicodedata.normalize("NFKC", repaired(text).replace("º", "°")).translate(_MINUS)
     text = text.replace("\u03bc", "µ").replace("×", "*").replace("⋅", "*").replace("·", "*")
     return _SPACE.sub(" ", text.replace("•", "*").replace("**", "^")).strip()

@@ -1,4 +1,4 @@
-"""Sums and averages of levels, each under its own name because they differ: 20 dBm and 30 dBm average 27.4 or 25 dBm."""
+"""Sums and averages of levels, each under its own name: the mean of 20 and 30 dBm is 27.4 dBm of power, 25 of dB."""
 
 from __future__ import annotations
 
@@ -34,7 +34,7 @@ def mean_of_db(levels: Iterable[Quantity]) -> Quantity:
     """
     values, unit = _aligned(levels)
     if not unit.is_log:
-        raise UnitError(f"values in {unit} are not in dB", hint="convert them first, or take the mean of power")
+        raise UnitError(f"values in {unit} are not in dB", hint="convert them, or take the mean of power")
     return Quantity(_scalar(np.mean(values, axis=0)), unit)
 
 
@@ -53,7 +53,8 @@ def _aligned(levels: Iterable[Quantity]) -> tuple[Any, Unit]:
         raise UnitError("there is nothing to sum or average")
     unit = given[0].unit
     values = [converter(level.unit, unit)(level.value) for level in given]
-    return np.asarray(values[0] if len(values) == 1 and np.ndim(values[0]) else values, dtype=np.float64), unit
+    stacked = values[0] if len(values) == 1 and np.ndim(values[0]) else values
+    return np.asarray(stacked, dtype=np.float64), unit
 
 
 def _to_power(values: Any, unit: Unit) -> Any:
@@ -63,7 +64,7 @@ def _to_power(values: Any, unit: Unit) -> Any:
         return np.square(values)
     if unit.kind in (Kind.LEVEL, Kind.LEVEL_DENSITY, Kind.POWER_FLUX, Kind.POWER_FLUX_DENSITY):
         return values
-    raise UnitError(f"values in {unit} have no power", hint="levels, fields, fluxes and ratios in dB have one")
+    raise UnitError(f"values in {unit} have no power", hint="levels, fields, fluxes and ratios in dB do")
 
 
 def _from_power(power: Any, unit: Unit) -> Any:

@@ -45,7 +45,7 @@ class LinearRow:
 
 
 LINEAR = (
-    LinearRow("Hz", "s^-1", prefixes="µmkMGT", spellings=("hertz", "Hertz", "c/s", "cps")),
+    LinearRow("Hz", "s^-1", prefixes="µmkMGT", spellings=("hz", "HZ", "hertz", "Hertz", "c/s")),
     LinearRow("s", "s", prefixes="fpnµm", prefixed=("sec",), spellings=("second", "seconds", "secs")),
     LinearRow("min", "s", Fraction(60), spellings=("minute", "minutes")),
     LinearRow("h", "s", Fraction(3600), spellings=("hr", "hrs", "hour", "hours")),
@@ -56,7 +56,7 @@ LINEAR = (
     LinearRow("mil", "m", Fraction("0.0000254"), spellings=("mils", "thou")),
     LinearRow("ft", "m", Fraction("0.3048"), spellings=("foot", "feet")),
     LinearRow("mile", "m", Fraction("1609.344"), spellings=("miles",)),
-    LinearRow("nmi", "m", Fraction(1852), spellings=("NM",)),
+    LinearRow("nmi", "m", Fraction(1852)),
     LinearRow("g", "kg", Fraction(1, 1000), prefixes="µmk", spellings=("gram", "grams")),
     LinearRow("lb", "kg", Fraction("0.45359237"), spellings=("lbs",)),
     LinearRow("A", "A", prefixes="fpnµmk", spellings=("amp", "amps", "ampere", "amperes", "Amp", "Amps")),
@@ -74,12 +74,17 @@ LINEAR = (
     LinearRow("Pa", "kg m^-1 s^-2", prefixes="mhkM", spellings=("pascal",)),
     LinearRow("bar", "kg m^-1 s^-2", Fraction(100000), prefixes="m"),
     LinearRow("T", "kg s^-2 A^-1", prefixes="pnµm", spellings=("tesla",)),
+    LinearRow("gauss", "kg s^-2 A^-1", Fraction(1, 10000), prefixes="m", spellings=("Gauss",)),
     LinearRow("K", "K", prefixes="µmk", spellings=("kelvin", "Kelvin", "kelvins", "degK", "°K", "deg K")),
-    LinearRow("°C", "K", offset=Fraction("273.15"), spellings=("degC", "celsius", "Celsius", "DegC", "deg_C")),
-    LinearRow("°F", "K", Fraction(5, 9), Fraction("459.67") * 5 / 9, spellings=("degF", "fahrenheit", "DegF")),
+    LinearRow(
+        "°C", "K", offset=Fraction("273.15"), spellings=("degC", "DegC", "deg_C", "celsius", "Celsius")
+    ),
+    LinearRow(
+        "°F", "K", Fraction(5, 9), Fraction("459.67") * 5 / 9, spellings=("degF", "DegF", "fahrenheit")
+    ),
     LinearRow("Δ°F", "K", Fraction(5, 9), spellings=("delta_degF",)),
     LinearRow("rad", "rad", prefixes="µm", spellings=("radian", "radians", "Rad")),
-    LinearRow("deg", "rad", _DEGREE, prefixes="m", spellings=("°", "degree", "degrees", "Deg", "Degrees", "degs")),
+    LinearRow("deg", "rad", _DEGREE, prefixes="m", spellings=("°", "degree", "degrees", "Degrees", "degs")),
     LinearRow("arcmin", "rad", _DEGREE / 60),
     LinearRow("arcsec", "rad", _DEGREE / 3600),
     LinearRow("rpm", "rad s^-1", Fraction(math.pi / 30)),
@@ -92,14 +97,26 @@ LINEAR = (
     LinearRow("RB", "RB", spellings=("RBs", "PRB", "PRBs", "resource blocks")),
     LinearRow("decade", "decade", spellings=("decades", "dec")),
     LinearRow("octave", "decade", Fraction(math.log10(2)), spellings=("octaves", "oct")),
-    LinearRow("%", "", Fraction(1, 100), spellings=("pct", "percent", "per cent", "Percent", "%RH", "% RH", "pc")),
+    LinearRow("%", "", Fraction(1, 100), spellings=("pct", "percent", "Percent", "per cent", "%RH", "% RH")),
     LinearRow("‰", "", Fraction(1, 1000), spellings=("permille",)),
     LinearRow("ppm", "", Fraction(1, 10**6), spellings=("PPM", "parts per million")),
     LinearRow("ppb", "", Fraction(1, 10**9), spellings=("PPB", "parts per billion")),
     LinearRow(
         "1",
         "",
-        spellings=("-", "—", "lin", "linear", "ratio", "dimensionless", "unitless", "none", ":1", "x:1", "number"),
+        spellings=(
+            "-",
+            "—",
+            "lin",
+            "linear",
+            "ratio",
+            "number",
+            "dimensionless",
+            "unitless",
+            "none",
+            ":1",
+            "x:1",
+        ),
     ),
 )
 
@@ -114,6 +131,12 @@ class LogRow:
     log_factor: int | None = None
     gauge: str = ""
     spellings: tuple[str, ...] = ()
+    dimension: str = ""  # where the reference alone does not tell what is meant
+
+
+MERIT = LogRow("dB/K", Kind.MERIT, "1/K", 10, dimension="figure of merit", spellings=("dBi/K",))
+ANTENNA_FACTOR = LogRow("dB(1/m)", Kind.PHYSICAL_LOG, "1/m", 20, dimension="antenna factor")
+AREA = LogRow("dBsm", Kind.PHYSICAL_LOG, "m^2", 10)
 
 
 def _levels() -> tuple[LogRow, ...]:
@@ -134,7 +157,9 @@ LOGARITHMIC = (
     LogRow("dBFS", Kind.RATIO, gauge="FS"),
     LogRow("dBHz", Kind.BANDWIDTH_LOG, "Hz", 10, spellings=("dB-Hz", "dB·Hz", "dB Hz", "dB*Hz")),
     LogRow("dBK", Kind.PHYSICAL_LOG, "K", 10, spellings=("dB-K", "dB·K")),
-    LogRow("dBsm", Kind.PHYSICAL_LOG, "m^2", 10),
+    AREA,
+    ANTENNA_FACTOR,
+    MERIT,
 )
 
 AMPLITUDES = frozenset({"voltage", "current", "electric field", "magnetic field"})
@@ -153,7 +178,6 @@ AMBIGUOUS = {
     "dBm2": "dBsm is a level over one square metre, dBm/m² a power flux: write which is meant",
     "mhz": "mHz and MHz differ by nine decades: write MHz",
     "mw": "mW and MW differ by nine decades: write mW",
-    "CM": "write cm",
 }
 
 PLANE_WORDS = ("eirp", "e.i.r.p.", "erp", "e.r.p.", "trp", "eis", "tis", "conducted", "radiated")

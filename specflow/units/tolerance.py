@@ -14,6 +14,8 @@ from specflow.units.kinds import Kind
 from specflow.units.refusal import no_conversion
 from specflow.units.unit import DECIBEL, KELVIN, Unit
 
+Array = NDArray[np.float64]
+
 CLOSE_DB = 1e-9
 CLOSE_RELATIVE = 1e-9
 
@@ -30,7 +32,7 @@ def tolerance_unit(unit: Unit) -> Unit:
 
 
 def to_tolerance(text_unit: Unit, level_unit: Unit) -> tuple[Unit, str]:
-    """The unit in which a tolerance written in ``text_unit`` applies to a value in ``level_unit``, and what was decided.
+    """The unit in which a tolerance written in ``text_unit`` applies to a value in ``level_unit``, and why.
 
     "54 ± 1.5 dBm" is read as 1.5 dB and the sentence says so; it is empty where nothing had to be decided. A tolerance
     in % or ppm of a linear value comes back in that unit: it is a part of the value it belongs to. Raises UnitError
@@ -67,20 +69,34 @@ def closeness(value: float, unit: Unit, *, converted: bool) -> float: ...
 
 
 @overload
-def closeness(value: NDArray[np.float64], unit: Unit, *, converted: bool) -> NDArray[np.float64]: ...
+def closeness(value: Array, unit: Unit, *, converted: bool) -> Array: ...
 
 
-def closeness(
-    value: float | NDArray[np.float64], unit: Unit, *, converted: bool
-) -> float | NDArray[np.float64]:
-    """How far two values may lie apart and still be equal: nothing as written, 1e-9 (dB, or relative) once converted."""
-    if not converted:
-        return value * 0.0
-    if unit.is_log:
-        return value * 0.0 + CLOSE_DB
-    return np.abs(value) * CLOSE_RELATIVE
+def closeness(value: float | Array, unit: Unit, *, converted: bool) -> float | Array:
+    """How far from ``value`` another may lie and still be equal: 0 as written, 1e-9 dB or relative once converted."""
+    size = np.abs(np.asarray(value, dtype=np.float64))
+    allowed = np.where(np.isfinite(size), size * CLOSE_RELATIVE, 0.0)
+    if unit.is_log or not converted:
+        allowed = np.full_like(size, CLOSE_DB if converted else 0.0)
+    return allowed if isinstance(value, np.ndarray) else float(allowed)
 
 
-def same_within(a: float, b: float, unit: Unit, *, converted: bool = False) -> bool:
-    """Whether two values in one unit are equal: as written in decimal, or within 1e-9 when one of them was converted."""
-    return a == b or abs(a - b) <= closeness(max(abs(a), abs(b)), unit, converted=converted)
+@overload
+def same_within(a: float, b: float, unit: Unit, *, converted: bool = False) -> bool: ...
+
+
+@overload
+def same_within(a: Array, b: float | Array, unit: Unit, *, converted: bool = False) -> NDArray[np.bool_]: ...
+
+
+def same_within(
+    a: float | Array, b: float | Array, unit: Unit, *, converted: bool = False
+) -> bool | NDArray[np.bool_]:
+    """Whether two values in one unit are equal: as written in decimal, or within 1e-9 once one was converted."""
+    left, right = np.asarray(a, dtype=np.float64), np.asarray(b, dtype=np.float64)
+    with np.errstate(invalid="ignore"):  # two infinities of one sign are equal by the first test
+        near = np.abs(left - right) <= closeness(
+            np.maximum(np.abs(left), np.abs(right)), unit, converted=converted
+        )
+    same = (left == right) | near
+    return bool(same) if same.ndim == 0 else same
