@@ -7,8 +7,10 @@ from typing import Any
 
 import numpy as np
 
+from specflow.exchange import payload_text
 from specflow.model.base import Document, code_key
 from specflow.model.block import Block, Item, Tier
+from specflow.model.change import Change
 from specflow.model.columns import Columns, TextColumn
 from specflow.model.conditions import ConditionsSet, Dimension
 from specflow.model.evidence import (
@@ -222,3 +224,28 @@ def a_snapshot(*documents: Document, columns: Mapping[str, EvidenceColumns] | No
         by_noun.setdefault(noun.name, {})[code_key(str(getattr(document, noun.id_field)))] = document
     held = {code_key(name): arrays for name, arrays in (columns or {}).items()}
     return Snapshot(1, by_noun, lambda tables: {table: held[code_key(table)] for table in tables})
+
+
+def adding(*documents: Document) -> list[Change]:
+    """Return the changes that add documents."""
+    return [_change("add", document, after=payload_text(document)) for document in documents]
+
+
+def editing(before: Document, **fields: Any) -> Change:
+    """Return the change that gives fields of a document other values."""
+    after = type(before).model_validate(before.model_dump() | fields)
+    return _change("edit", before, before=payload_text(before), after=payload_text(after))
+
+
+def removing(before: Document) -> Change:
+    """Return the change that removes a document."""
+    return _change("remove", before, before=payload_text(before))
+
+
+def _change(action: str, document: Document, **texts: str) -> Change:
+    noun = NOUN_BY_DOCUMENT[type(document)]
+    code = getattr(document, noun.id_field)
+    revision = None if action == "add" else getattr(document, "revision", 1)
+    return Change.model_validate(
+        {"noun": noun.name, "id": code, "action": action, "base_revision": revision} | texts
+    )
