@@ -198,8 +198,12 @@ class _Cells:
         blank = (after == ord("/")) | ((after == ord(">")) & (first == ord("<")))
         self.valued = (has_tag & ~blank) | inline
         self.cached = has_tag & (self.text | ~blank)
-        unnamed = self.shared & has_tag & ~blank & (after == ord(">")) & ((first < _ZERO) | (first > _NINE))
-        if unnamed.any():
+        self._check_shared_texts(self.shared & self.valued & (after == ord(">")))
+
+    def _check_shared_texts(self, which: Flags) -> None:
+        """The bulk reader takes whatever is no number for shared text 0."""
+        _, end = self._digits(self._value_at[which] + len(b"<v>"), 10)
+        if not (self._bytes[end] == ord("<")).all():
             raise SheetProblem("a cell names no shared text")
 
     def _behind_formula(self, at: Places) -> Places:

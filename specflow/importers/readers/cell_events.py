@@ -13,6 +13,7 @@ MAX_ROW, MAX_COLUMN = 1_048_576, 16_384
 
 TEXT_TYPES = frozenset({"s", "str", "inlineStr"})
 
+_SHARED = re.compile(r"[0-9]{1,10}")
 _REFERENCE = re.compile(r"([A-Za-z]{1,3})([0-9]{1,7})")
 
 
@@ -34,6 +35,7 @@ class SheetEvents:
         self._text: list[str] | None = None
         self._value = ""
         self._has_value = False
+        self._inline = False
         self._parser = expat.ParserCreate()
         self._parser.buffer_text = True
         self._parser.StartElementHandler = self._start
@@ -71,7 +73,7 @@ class SheetEvents:
             case "f":
                 self._formula = True
             case "is":
-                self._has_value, self._value = True, "inline"
+                self._inline = True
             case "row":
                 self._start_row(attributes)
             case "col":
@@ -104,13 +106,14 @@ class SheetEvents:
             self._column += 1
         if not 1 <= self._row <= MAX_ROW or not 1 <= self._column <= MAX_COLUMN:
             raise SheetProblem(f"a cell lies outside the sheet (row {self._row}, column {self._column})")
-        self._cell, self._formula, self._value, self._has_value = attributes, False, "", False
+        self._cell = attributes
+        self._formula, self._value, self._has_value, self._inline = False, "", False, False
 
     def _end_cell(self) -> None:
         odd = self._oddity(self._cell.get("t", "n"))
         if odd is not None:
             self._marks.add_one(self._row, self._column, odd)
-        if self._value or (odd is not None and odd.kind is OddKind.NO_VALUE):
+        if self._value or self._inline or (odd is not None and odd.kind is OddKind.NO_VALUE):
             self._marks.extend(self._row, self._column, self._row, self._column)
 
     def _oddity(self, kind: str) -> OddCell | None:
@@ -120,11 +123,12 @@ class SheetEvents:
             return OddCell(OddKind.NO_VALUE)
         if self._formula and kind == "n" and self._value == "0" and self._styles.never_calculated:
             return NEVER_CALCULATED
-        if kind == "s" and self._has_value and not self._value.isdigit():
+        if kind == "s" and self._value and not _SHARED.fullmatch(self._value):
             raise SheetProblem(f"a cell in row {self._row} names no shared text ({self._value[:20]!r})")
-        if kind == "d" and self._value:
+        filled = self._value or self._inline
+        if kind == "d" and filled:
             return OddCell(OddKind.DATE, "ISO 8601")
-        if kind == "n" and self._value:
+        if kind == "n" and filled:
             return self._styles.of(_style(self._cell.get("s", "0")))
         return None
 
