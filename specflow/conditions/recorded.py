@@ -15,6 +15,8 @@ from specflow.errors import UnitError
 from specflow.model.columns import Columns, TextColumn
 from specflow.units import Converter, converter, parse_unit
 
+_PLAIN = {"", "1"}  # both say: a plain number
+
 
 @lru_cache(maxsize=4096)
 def conversion(source: str, target: str, difference: bool = False) -> Converter | str:
@@ -34,7 +36,7 @@ def recorded_numbers(records: Columns, name: str, unit: str) -> NDArray[np.float
     if actual is None:
         return _numbers_typed_as_words(records, name) if not unit else None
     recorded = records.units.get(name, "")
-    if recorded == unit:
+    if recorded == unit or {recorded, unit} <= _PLAIN:
         return actual
     step = conversion(recorded, unit)
     return None if isinstance(step, str) else np.asarray(step(actual), np.float64)
@@ -45,7 +47,7 @@ def recorded_words(records: Columns, name: str) -> TextColumn | None:
     column = records.text.get(name)
     if column is not None or name not in records.numeric:
         return column
-    if records.units.get(name, ""):
+    if records.units.get(name, "") not in _PLAIN:
         return None
     values = records.numeric[name]
     return TextColumn.of([None if value != value else format(value, ".15g") for value in values.tolist()])
@@ -58,7 +60,7 @@ def recording_note(records: Columns, name: str, unit: str) -> str:
     if name not in records.numeric:
         return ""
     recorded = records.units.get(name, "")
-    if recorded == unit:
+    if recorded == unit or {recorded, unit} <= _PLAIN:
         return ""
     step = conversion(recorded, unit)
     return f"{name}: {step if isinstance(step, str) else f'{recorded} read as {unit} ({step.words})'}"

@@ -96,6 +96,10 @@ class Dimension(Document):
             raise ValueError(f"{self.name}: give values, words or a range, and only one of them")
         if self.need is not Need.REQUIRED and any(kinds):
             raise ValueError(f"{self.name}: a dimension that is '{self.need.value}' takes no values")
+        if self.need is not Need.REQUIRED and (self.tolerance or self.rule is not MatchingRule.WITHIN):
+            raise ValueError(
+                f"{self.name}: a dimension that is '{self.need.value}' takes no tolerance and no rule"
+            )
         if self.words and (self.tolerance or self.rule is not MatchingRule.WITHIN):
             raise ValueError(
                 f"{self.name}: words are compared as they are; they take no tolerance and no rule"
