@@ -88,7 +88,7 @@ class Slope(StrEnum):
 
 
 class Segment(Document):
-    """A piece of a mask: from ``start`` to ``stop`` on the axis, ``value`` (to ``end_value``), measured in ``bandwidth``.
+    """A piece of a mask: ``start`` to ``stop`` on the axis, ``value`` (to ``end_value``), measured in ``bandwidth``.
 
     ``stop`` None runs on without end. ``end_value`` None: flat, or a formula of the axis. Both ends belong to the
     segment unless ``start_open`` / ``stop_open``.
@@ -221,9 +221,7 @@ class Exceptions(Document):
     relaxed: LimitNode | None = None
 
 
-Statistic = Annotated[
-    Percentile | Worst | Mean | ToleranceBound | Exceptions, Field(discriminator="kind")
-]
+Statistic = Annotated[Percentile | Worst | Mean | ToleranceBound | Exceptions, Field(discriminator="kind")]
 
 
 class Population(Document):

@@ -1,0 +1,54 @@
+"""Limits: reading them from text, what they come to for each record, and saying them in words.
+
+Where things live:
+
+- ``reader`` positions and tokens; ``expression_grammar`` the grammar that limits, gates, applicability and filters
+  share; ``bound_grammar``, ``shape_grammar``, ``population_grammar`` the parts of a limit; ``grammar`` the whole
+- ``settling`` which unit a limit has, and what does not add; ``conversion`` units that meet in it
+- ``expression`` parse and evaluate expressions; ``expression_value`` how, on arrays; ``inputs`` where names look
+- ``evaluation`` the bounds a limit sets; ``bounds`` what comes out; ``mask`` and ``combination`` two large parts
+- ``text`` canonical spelling; ``words`` plain English; ``difference`` what changed; ``alternative`` members apart
+- ``tree``, ``expression_shape`` what a tree is made of
+
+Nothing here looks anything up: declared values and conditions are handed in.
+"""
+
+from specflow.limits.alternative import Alternative, alternatives, choose, rule_of
+from specflow.limits.bounds import Bounds, LimitContext
+from specflow.limits.difference import limit_difference
+from specflow.limits.evaluation import evaluate_limit
+from specflow.limits.expression import (
+    evaluate_condition,
+    evaluate_expression,
+    expression_names,
+    expression_text,
+    expression_words,
+    parse_condition,
+    parse_expression,
+)
+from specflow.limits.grammar import parse_limit
+from specflow.limits.text import limit_text
+from specflow.limits.tree import limit_inputs
+from specflow.limits.words import limit_words
+
+__all__ = [
+    "Alternative",
+    "Bounds",
+    "LimitContext",
+    "alternatives",
+    "choose",
+    "evaluate_condition",
+    "evaluate_expression",
+    "evaluate_limit",
+    "expression_names",
+    "expression_text",
+    "expression_words",
+    "limit_difference",
+    "limit_inputs",
+    "limit_text",
+    "limit_words",
+    "parse_condition",
+    "parse_expression",
+    "parse_limit",
+    "rule_of",
+]

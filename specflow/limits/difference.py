@@ -1,0 +1,199 @@
+"""What changed between two limits, in meaning: tightened or relaxed by how much, or of another shape."""
+
+from __future__ import annotations
+
+from decimal import Decimal
+
+from specflow.limits.conversion import difference_unit, same_unit_spelling
+from specflow.limits.evaluation import plain_number
+from specflow.limits.expression_text import expression_text, expression_words
+from specflow.limits.text import limit_text, node_text, statistic_text
+from specflow.limits.words import node_words
+from specflow.model.expression import Expression
+from specflow.model.limit import (
+    Alternatives,
+    Between,
+    Bound,
+    Cases,
+    Gate,
+    Limit,
+    LimitNode,
+    Mask,
+    MeasuredIn,
+    OfQuantity,
+    Population,
+    Segment,
+    Side,
+    Tolerance,
+)
+
+
+def limit_difference(before: Limit, after: Limit) -> str:
+    """Return what changed, in words ("tightened by 0.5 dB (-28 -> -28.5 dBc)"); "" when the meaning is the same."""
+    changes = node_differences(before.tree, after.tree)
+    if before.state is not after.state:
+        changes.append(f"state changed from {before.state.value} to {after.state.value}")
+    if before.rounding != after.rounding:
+        changes.append("rounding changed")
+    if before.test_tolerance != after.test_tolerance:
+        changes.append("test tolerance changed")
+    if not changes and limit_text(before) != limit_text(after):
+        changes.append(f"changed from {limit_text(before)} to {limit_text(after)}")
+    return "; ".join(changes)
+
+
+def node_differences(before: LimitNode, after: LimitNode) -> list[str]:
+    """Return the changes between two nodes; a node of another shape is told in words."""
+    if before == after:
+        return []
+    match before, after:
+        case Bound(), Bound():
+            return _bounds(before, after)
+        case Between(), Between():
+            return _units(before.unit, after.unit) or [
+                *_named("lower limit", _moved(before.lower, after.lower, before.unit, Side.LOWER)),
+                *_named("upper limit", _moved(before.upper, after.upper, before.unit, Side.UPPER)),
+            ]
+        case Tolerance(), Tolerance():
+            return _tolerances(before, after)
+        case Mask(), Mask():
+            return _masks(before, after)
+        case Cases(), Cases() if len(before.cases) == len(after.cases):
+            return _cases(before, after)
+        case Alternatives(), Alternatives() if len(before.members) == len(after.members):
+            pairs = zip(before.members, after.members, strict=True)
+            changes = [] if before.rule is after.rule else [f"the {after.rule} now governs"]
+            for at, (was, now) in enumerate(pairs, start=1):
+                changes += _named(f"alternative {at}", node_differences(was, now))
+            return changes
+        case Gate(), Gate():
+            gate = [] if before.when == after.when else [f"gate changed to {expression_words(after.when)}"]
+            return gate + node_differences(before.limit, after.limit)
+        case MeasuredIn(), MeasuredIn():
+            old, new = expression_text(before.bandwidth), expression_text(after.bandwidth)
+            width = [] if old == new else [f"measurement bandwidth changed from {old} to {new}"]
+            return width + node_differences(before.limit, after.limit)
+        case Population(), Population():
+            return _populations(before, after) + node_differences(before.limit, after.limit)
+        case OfQuantity(), OfQuantity() if before.quantity == after.quantity:
+            return node_differences(before.limit, after.limit)
+    return [f"changed from {node_words(before)} to {node_words(after)}"]
+
+
+def _named(what: str, changes: list[str]) -> list[str]:
+    return [f"{what} {change}" for change in changes]
+
+
+def _units(before: str, after: str) -> list[str]:
+    same = same_unit_spelling(before, after)
+    return [] if same else [f"unit changed from {before or 'none'} to {after or 'none'}"]
+
+
+def _bounds(before: Bound, after: Bound) -> list[str]:
+    if before.side is not after.side:
+        return [f"changed from {node_words(before)} to {node_words(after)}"]
+    changes = _units(before.unit, after.unit)
+    if changes:
+        return [f"{changes[0]} ({node_text(before)} -> {node_text(after)})"]
+    changes = _moved(before.value, after.value, before.unit, before.side)
+    if before.strict is not after.strict:
+        changes.append(f"strictness changed: equality {'no longer ' if after.strict else ''}meets it")
+    return changes
+
+
+def _moved(before: Expression, after: Expression, unit: str, side: Side) -> list[str]:
+    """Tell by how much a value moved, exactly in decimal; a formula is quoted."""
+    if before == after:
+        return []
+    old, new = plain_number(before), plain_number(after)
+    if old is None or new is None:
+        return [f"formula changed from {expression_text(before)} to {expression_text(after)} {unit}"]
+    arrow = f"({expression_text(before)} -> {expression_text(after)} {unit})"
+    amount = Decimal(expression_text(after)) - Decimal(expression_text(before))
+    if amount == 0:
+        return [f"written with other digits {arrow}"]
+    tighter = (amount > 0) == (side is Side.LOWER)
+    by = (
+        f"{abs(amount).normalize():f} {difference_unit(unit)}"
+        if unit != "1"
+        else f"{abs(amount).normalize():f}"
+    )
+    return [f"{'tightened' if tighter else 'relaxed'} by {by} {arrow}"]
+
+
+def _tolerances(before: Tolerance, after: Tolerance) -> list[str]:
+    units = _units(before.unit, after.unit) + _units(before.tolerance_unit, after.tolerance_unit)
+    if units:
+        return units
+    changes: list[str] = []
+    if before.nominal != after.nominal:
+        old = "zero" if before.nominal is None else expression_text(before.nominal)
+        new = "zero" if after.nominal is None else expression_text(after.nominal)
+        changes.append(f"nominal moved from {old} to {new} {before.unit}")
+    if before.plus == before.minus and after.plus == after.minus:
+        return changes + _named(
+            "tolerance", _moved(before.plus, after.plus, before.tolerance_unit, Side.UPPER)
+        )
+    changes += _named("upper tolerance", _moved(before.plus, after.plus, before.tolerance_unit, Side.UPPER))
+    return changes + _named(
+        "lower tolerance", _moved(before.minus, after.minus, before.tolerance_unit, Side.UPPER)
+    )
+
+
+def _masks(before: Mask, after: Mask) -> list[str]:
+    head = (before.axis, before.axis_unit, before.side) == (after.axis, after.axis_unit, after.side)
+    if not head or len(before.segments) != len(after.segments):
+        return [f"mask redrawn: {node_text(before)} -> {node_text(after)}"]
+    changes = _units(before.unit, after.unit)
+    if before.strict is not after.strict:
+        changes.append("strictness changed")
+    for at, (old, new) in enumerate(zip(before.segments, after.segments, strict=True), start=1):
+        changes += _named(f"mask segment {at}", _segments(old, new, before))
+    if before.exclusions != after.exclusions:
+        changes.append("exclusions changed")
+    if before.allowances != after.allowances:
+        changes.append("allowances changed")
+    return changes
+
+
+def _segments(before: Segment, after: Segment, mask: Mask) -> list[str]:
+    changes: list[str] = []
+    ends = ("start", "stop", "start_open", "stop_open")
+    if any(getattr(before, end) != getattr(after, end) for end in ends):
+        changes.append("moved along the axis")
+    if before.slope is not after.slope:
+        changes.append(f"slope changed to {after.slope.value}")
+    if before.bandwidth != after.bandwidth:
+        changes.append("measurement bandwidth changed")
+    if before.end_value is None and after.end_value is None:
+        return changes + _moved(before.value, after.value, mask.unit, mask.side)
+    changes += _named("at its start", _moved(before.value, after.value, mask.unit, mask.side))
+    old, new = before.end_value or before.value, after.end_value or after.value
+    return changes + _named("at its end", _moved(old, new, mask.unit, mask.side))
+
+
+def _cases(before: Cases, after: Cases) -> list[str]:
+    changes: list[str] = []
+    for at, (old, new) in enumerate(zip(before.cases, after.cases, strict=True), start=1):
+        if old.when != new.when:
+            changes.append(f"case {at} now holds where {expression_words(new.when)}")
+        changes += _named(f"case {at} ({expression_words(new.when)})", node_differences(old.limit, new.limit))
+    if before.otherwise != after.otherwise:
+        if before.otherwise is not None and after.otherwise is not None:
+            changes += _named("otherwise", node_differences(before.otherwise, after.otherwise))
+        else:
+            changes.append(
+                "the case for all the rest " + ("was removed" if after.otherwise is None else "was added")
+            )
+    return changes
+
+
+def _populations(before: Population, after: Population) -> list[str]:
+    changes: list[str] = []
+    if before.statistic != after.statistic:
+        old, new = statistic_text(before.statistic), statistic_text(after.statistic)
+        changes.append(f"statistic changed from '{old}' to '{new}'")
+    rest = ("of", "over", "where", "least")
+    if any(getattr(before, part) != getattr(after, part) for part in rest):
+        changes.append("population changed")
+    return changes

@@ -1,0 +1,269 @@
+"""Reading text piece by piece: positions, words, numbers and units, and errors that name the column."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Iterator
+from contextlib import contextmanager
+from functools import lru_cache
+from typing import NoReturn
+
+from specflow.errors import ExpressionError, UnitError
+from specflow.model.expression import FUNCTIONS
+from specflow.units import format_unit, parse_unit
+
+MAX_LENGTH = 4000
+MAX_DEPTH = 40
+
+#: Characters read as a plainer one; one for one, so that columns stay those of the text as typed. The en dash is
+#: kept apart: between two values it is a range, in front of one a minus sign.
+_PLAINER = str.maketrans(
+    {
+        "\u00a0": " ",
+        "\u2007": " ",
+        "\u2009": " ",
+        "\u202f": " ",
+        "\t": " ",
+        "\n": " ",
+        "\r": " ",
+        "\u2212": "-",
+        "\u2010": "-",
+        "\u2011": "-",
+        "\ufe63": "-",
+        "\uff0d": "-",
+        "\u00d7": "*",
+        "\u00f7": "/",
+        "\u2044": "/",
+        "\u2018": "'",
+        "\u2019": "'",
+        "\u201c": '"',
+        "\u201d": '"',
+    }
+)
+
+#: Words of the grammar: none of them is read as a unit after a number ("5 min" is a side, not five minutes).
+_GRAMMAR_WORDS = (
+    "min max minimum maximum or and to if in at of over with when where rounded test tolerance for by between "
+    "worst mean per not else otherwise tbr tbd tbc ffs allow within whichever is from except none no about on than "
+    "up down least more less"
+)
+RESERVED = frozenset(_GRAMMAR_WORDS.split())
+
+FUNCTION_NAMES = (*FUNCTIONS, "log")
+
+_BLANKS = re.compile(r" *")
+_NUMBER = re.compile(r"(?:\d+(?:\.(?!\.)\d*)?|\.\d+)(?:[eE][+-]?\d+)?")
+_THOUSANDS = re.compile(r"\d{1,3}(?:,\d{3})+\.\d+")
+_COMMA = re.compile(r"\d+,\d+")
+_NAME = re.compile(r"[^\W\d]\w*(?:\.[^\W\d]\w*)*")
+_LETTERS = r"[A-Za-zµμΩΩ°%‰]+"
+_UNIT_HEAD = re.compile(_LETTERS + r"[²³]?")
+_UNIT_TAIL = re.compile(
+    rf"(?:\s*/\s*|\s+per\s+)(?:\d+(?:\.\d+)?\s*)?(?:{_LETTERS}\d?[²³]?|\([^()]{{1,20}}\))|\s+(?:rms|RMS)"
+)
+_CALL = re.compile(rf"(?:{'|'.join(FUNCTION_NAMES)}) *\(")
+
+
+@lru_cache(maxsize=2048)
+def canonical_unit(text: str) -> str | None:
+    """Return the canonical spelling of a unit, None when it is none."""
+    try:
+        return format_unit(parse_unit(text))
+    except UnitError:
+        return None
+
+
+class Reader:
+    """A place in a text. A ``take`` method moves on and returns what it took, or leaves the place and says None."""
+
+    def __init__(self, text: str) -> None:
+        if len(text) > MAX_LENGTH:
+            raise ExpressionError(
+                f"the text has {len(text)} characters; at most {MAX_LENGTH} are read",
+                where=f"column {MAX_LENGTH + 1}",
+                hint="split it",
+            )
+        self.original = text
+        self.text = text.translate(_PLAINER)
+        self.place = 0
+        self.depth = 0
+        self.calls = 0
+        self._skip()
+
+    def _skip(self) -> None:
+        match = _BLANKS.match(self.text, self.place)
+        self.place = match.end() if match else self.place
+
+    def done(self) -> bool:
+        """True when nothing is left."""
+        return self.place >= len(self.text)
+
+    @property
+    def rest(self) -> str:
+        """The first characters of what is left, for messages."""
+        rest = self.original[self.place :].strip()
+        return rest if len(rest) <= 20 else rest[:20] + "..."
+
+    def fail(self, message: str, *, hint: str = "", place: int | None = None) -> NoReturn:
+        """Raise ExpressionError naming the column (counted from 1)."""
+        raise self.error(message, hint=hint, place=place)
+
+    def error(self, message: str, *, hint: str = "", place: int | None = None) -> ExpressionError:
+        """Return the error that ``fail`` raises."""
+        column = (self.place if place is None else place) + 1
+        return ExpressionError(message, where=f"column {column}", hint=hint)
+
+    @contextmanager
+    def deeper(self) -> Iterator[None]:
+        """Count one level of nesting; too many raise ExpressionError instead of exhausting the stack."""
+        self.depth += 1
+        if self.depth > MAX_DEPTH:
+            self.fail(f"nested deeper than {MAX_DEPTH} levels", hint="name parts as declared values")
+        try:
+            yield
+        finally:
+            self.depth -= 1
+
+    def sees(self, *symbols: str) -> bool:
+        """True when one of the symbols is next."""
+        return any(self.text.startswith(symbol, self.place) for symbol in symbols)
+
+    def take(self, *symbols: str) -> str | None:
+        """Take one of the symbols; the longest must be given first."""
+        for symbol in symbols:
+            if self.text.startswith(symbol, self.place):
+                self.place += len(symbol)
+                self._skip()
+                return symbol
+        return None
+
+    def expect(self, symbol: str, after: str) -> None:
+        """Take the symbol or fail."""
+        if self.take(symbol) is None:
+            found = f"found {self.rest!r}" if not self.done() else "the text ends"
+            self.fail(f"expected {symbol!r} after {after}, but {found}")
+
+    def match_words(self, phrase: str) -> int | None:
+        """Return where the phrase ends when it is next as whole words, in any case; None otherwise."""
+        pattern = _phrase(phrase)
+        match = pattern.match(self.text, self.place)
+        return match.end() if match else None
+
+    def sees_words(self, *phrases: str) -> bool:
+        """True when one of the phrases is next."""
+        return any(self.match_words(phrase) is not None for phrase in phrases)
+
+    def take_words(self, *phrases: str) -> str | None:
+        """Take one of the phrases as whole words in any case; the longest must be given first."""
+        for phrase in phrases:
+            end = self.match_words(phrase)
+            if end is not None:
+                self.place = end
+                self._skip()
+                return phrase
+        return None
+
+    def take_pattern(self, pattern: re.Pattern[str]) -> str | None:
+        """Take what the pattern matches here."""
+        match = pattern.match(self.text, self.place)
+        if match is None or match.end() == match.start():
+            return None
+        self.place = match.end()
+        self._skip()
+        return match.group()
+
+    def take_name(self) -> str | None:
+        """Take a name: a letter, then letters, digits, underscores; parts may be joined by dots."""
+        return self.take_pattern(_NAME)
+
+    def sees_name(self) -> bool:
+        """True when a name is next."""
+        return _NAME.match(self.text, self.place) is not None
+
+    def sees_call(self) -> bool:
+        """True when a function and its opening parenthesis are next."""
+        return _CALL.match(self.text, self.place) is not None
+
+    def take_number(self) -> str | None:
+        """Take an unsigned number and return it with a decimal point, digits as written.
+
+        A comma between digits is a decimal comma where it can be nothing else; otherwise the reading is refused.
+        """
+        start = self.place
+        thousands = self.take_pattern(_THOUSANDS)
+        if thousands is not None:
+            return thousands.replace(",", "")
+        comma = _COMMA.match(self.text, start)
+        if comma is not None:
+            return self._decimal_comma(comma)
+        number = self.take_pattern(_NUMBER)
+        if number is None:
+            return None
+        if not float(number) < float("inf"):
+            self.fail(f"{number} is too large", place=start)
+        if number.startswith("."):
+            number = "0" + number
+        return number.rstrip(".") if number.endswith(".") else number
+
+    def _decimal_comma(self, match: re.Match[str]) -> str:
+        whole, fraction = match.group().split(",")
+        point = f"{whole}.{fraction}"
+        if self.calls:
+            self.fail(
+                f"{match.group()} may be two values or {point}",
+                hint=f"write '{whole}, {fraction}' or '{point}'",
+                place=match.start() + len(whole),
+            )
+        if len(fraction) == 3 and whole != "0" and len(whole) <= 3:
+            self.fail(
+                f"{match.group()} may be {point} or {whole}{fraction}",
+                hint="write a decimal point, and no separator of thousands",
+                place=match.start() + len(whole),
+            )
+        self.place = match.end()
+        self._skip()
+        return point
+
+    def take_unit(self) -> str | None:
+        """Take the longest unit that is next and return its canonical spelling; None when a word or sign follows.
+
+        A word that is neither a unit nor part of the grammar fails, with the nearest units.
+        """
+        if self.take_words("plain") is not None:
+            return "1"
+        head = _UNIT_HEAD.match(self.text, self.place)
+        if head is None or head.group().lower() in RESERVED or self.sees_call():
+            return None
+        for end in self._unit_ends(head.end()):
+            unit = canonical_unit(self.text[self.place : end].strip())
+            if unit is not None:
+                self.place = end
+                self._skip()
+                return unit
+        return None
+
+    def _unit_ends(self, end: int) -> list[int]:
+        ends = [end]
+        while (match := _UNIT_TAIL.match(self.text, ends[-1])) is not None and len(ends) < 6:
+            ends.append(match.end())
+        follows = re.compile(r"[\w]")
+        return [end for end in reversed(ends) if not follows.match(self.text, end)]
+
+    def refuse_unknown_unit(self) -> None:
+        """Fail when a word that is no unit and no part of the grammar follows a number."""
+        name = _NAME.match(self.text, self.place)
+        if name is None or name.group().lower() in RESERVED or self.sees_call():
+            return
+        word = name.group()
+        try:
+            parse_unit(word)
+        except UnitError as error:
+            self.fail(
+                f"{word!r} is not a unit: {error.message}", hint=error.hint or f"for a product write *{word}"
+            )
+
+
+@lru_cache(maxsize=256)
+def _phrase(phrase: str) -> re.Pattern[str]:
+    words = [re.escape(word) for word in phrase.split(" ")]
+    return re.compile(" +".join(words) + r"(?![\w])", re.IGNORECASE)

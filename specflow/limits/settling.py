@@ -1,0 +1,170 @@
+"""Settling the unit of a limit: which unit the numbers of a value are in, and what does not go together.
+
+Only the additive spine of a formula carries the unit of its result: sums, negatives, min, max, choices. Inside
+products and logarithms numbers are plain.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+
+from specflow.errors import ExpressionError
+from specflow.limits.conversion import (
+    PLAIN,
+    conversion,
+    difference_unit,
+    is_difference,
+    same_unit_spelling,
+    unit_of,
+)
+from specflow.limits.expression_shape import walk
+from specflow.model.expression import Call, Choice, Expression, Name, Negative, Number, Operation, Share
+from specflow.units import Kind
+
+_NO_UNIT = "the limit has no unit"
+_NO_UNIT_HINT = "write it after the number, as in '45 dBm'; 1 for a plain number"
+
+
+def spine(node: Expression) -> Iterator[Expression]:
+    """Yield the parts of a value that carry its unit."""
+    match node:
+        case Negative(operand=operand):
+            yield from spine(operand)
+        case Operation(sign="+" | "-", left=left, right=right):
+            yield from spine(left)
+            yield from spine(right)
+        case Call(function="min" | "max" | "powersum" | "abs", arguments=arguments):
+            for part in arguments:
+                yield from spine(part)
+        case Choice(then=then, otherwise=otherwise):
+            yield from spine(then)
+            yield from spine(otherwise)
+        case Operation(sign="*" | "/", left=left, right=right):
+            yield from (part for side in (left, right) for part in spine(side) if _has_unit(part))
+        case _:
+            yield node
+
+
+def _has_unit(node: Expression) -> bool:
+    return isinstance(node, Number) and node.unit not in PLAIN
+
+
+def settle(values: Sequence[Expression], written: str, hint: str = "") -> str:
+    """Return the unit of a limit whose values are these; ``written`` is the unit after the whole, "" if none.
+
+    ``hint`` is the unit the requirement's parameter has. Raises ExpressionError when there is no unit, or when
+    parts of different kinds meet.
+    """
+    unit = written or _from_parts(values, hint) or hint
+    if not unit:
+        raise ExpressionError(_NO_UNIT, hint=_NO_UNIT_HINT)
+    for value in values:
+        for part in spine(value):
+            if isinstance(part, Number) and part.unit:
+                _check(part, unit)
+    return unit
+
+
+def _from_parts(values: Sequence[Expression], hint: str) -> str:
+    parts = [part for value in values for part in spine(value)]
+    numbers = [part.unit for part in parts if isinstance(part, Number) and part.unit]
+    names = [part.unit for part in parts if isinstance(part, Name) and part.unit]
+    shares = [part.of.unit for part in parts if isinstance(part, Share) and part.of.unit]
+    units = numbers + shares or names
+    open_names = any(isinstance(part, Name) and not part.unit for part in parts)
+    if names and numbers and all(is_difference(unit, names[-1]) for unit in numbers):
+        return names[-1]
+    if hint and open_names and units and all(is_difference(unit, hint) for unit in units):
+        return hint
+    return _leading(units)
+
+
+def _leading(units: Sequence[str]) -> str:
+    """Return the unit that the others are differences of or convert to: the last such one."""
+    for unit in reversed(units):
+        if all(_fits(other, unit) for other in units):
+            return unit
+    if units:
+        raise mixed_units(units)
+    return ""
+
+
+def _fits(other: str, unit: str) -> bool:
+    return is_difference(other, unit) or (
+        not is_difference(unit, other) and conversion(other, unit) is not None and _same_sort(other, unit)
+    )
+
+
+def _same_sort(left: str, right: str) -> bool:
+    """Tell whether two units may add: a ratio does not add to a quantity, dBi not to dBc."""
+    if left in PLAIN or right in PLAIN:
+        return left in PLAIN and right in PLAIN
+    one, other = unit_of(left), unit_of(right)
+    return one.kind is other.kind
+
+
+def mixed_units(units: Sequence[str]) -> ExpressionError:
+    """Return the error for units that do not add, naming what is missing."""
+    different = list(dict.fromkeys(units))
+    relative = [unit for unit in different if unit not in PLAIN and _is_share(unit)]
+    others = [unit for unit in different if unit not in relative]
+    message = f"{' and '.join(different)} do not add"
+    if relative and others:
+        whole = (
+            "the carrier frequency"
+            if others[0].endswith("Hz")
+            else f"the value in {others[0]} it is a share of"
+        )
+        return ExpressionError(
+            f"{message} without {whole}",
+            hint=f"write '... {relative[0]} of carrier + ... {others[0]}' and declare the value of 'carrier'",
+        )
+    return ExpressionError(message, hint="write both parts in one unit")
+
+
+def _is_share(unit: str) -> bool:
+    found = unit_of(unit)
+    return found.kind is Kind.RATIO and not found.is_log
+
+
+def _check(part: Number, unit: str) -> None:
+    if same_unit_spelling(part.unit, unit) or is_difference(part.unit, unit):
+        return
+    if part.unit not in PLAIN and conversion(part.unit, unit) is not None and _same_sort(part.unit, unit):
+        return
+    raise mixed_units([part.unit, unit])
+
+
+def settle_tolerance(written: str, unit: str) -> tuple[str, str]:
+    """Return the unit of a tolerance about a nominal in ``unit``, and the sentence to echo, "" when none is needed.
+
+    A tolerance written in the unit of a level is read as its difference: 54 ± 1.5 dBm is ± 1.5 dB.
+    """
+    difference = difference_unit(unit)
+    if not written:
+        return difference, "" if same_unit_spelling(
+            difference, unit
+        ) else f"the tolerance is read in {difference}"
+    if same_unit_spelling(written, unit):
+        if same_unit_spelling(difference, unit):
+            return unit, ""
+        return difference, f"the tolerance written in {written} is read as {difference}"
+    if is_difference(written, unit):
+        return written, ""
+    if written not in PLAIN and _is_share(written):
+        if unit_of(unit).is_log:
+            raise ExpressionError(
+                f"{written} of a value in {unit} means nothing", hint="give the tolerance in dB"
+            )
+        return written, ""
+    if conversion(written, difference) is not None and _same_sort(written, difference):
+        return written, ""
+    raise mixed_units([unit, written])
+
+
+def is_bare_arithmetic(node: Expression) -> bool:
+    """Tell whether a value is a sum of plain numbers, which may be meant as a range or a tolerance (3-5 V)."""
+    if not isinstance(node, Operation) or node.sign not in "+-":
+        return False
+    numbers = [part for part in walk(node) if isinstance(part, Number)]
+    return all(isinstance(part, Number | Negative | Operation) for part in walk(node)) and not numbers[0].unit
