@@ -10,9 +10,12 @@ import numpy as np
 from specflow.exchange import payload_text
 from specflow.model.base import Document, code_key
 from specflow.model.block import Block, Item, Tier
+from specflow.model.budget import Budget, BudgetLine
 from specflow.model.change import Change
 from specflow.model.columns import Columns, TextColumn
 from specflow.model.conditions import ConditionsSet, Dimension
+from specflow.model.decision import Waiver
+from specflow.model.declared import DeclaredValue
 from specflow.model.evidence import (
     ConditionColumn,
     EvidenceColumns,
@@ -28,6 +31,7 @@ from specflow.model.parameter import Better, Parameter, QuantityIdentity
 from specflow.model.project import Project
 from specflow.model.requirement import Activity, Requirement
 from specflow.model.snapshot import Snapshot
+from specflow.model.verdict import CloseOut, Compliance, Label, RequirementStatus, Standing, Verdict
 
 
 def a_project(**fields: Any) -> Project:
@@ -248,4 +252,60 @@ def _change(action: str, document: Document, **texts: str) -> Change:
     revision = None if action == "add" else getattr(document, "revision", 1)
     return Change.model_validate(
         {"noun": noun.name, "id": code, "action": action, "base_revision": revision} | texts
+    )
+
+
+def a_declared_value(id: str = "P_rated", **fields: Any) -> DeclaredValue:
+    """Return a declared rated power of 54 dBm."""
+    return DeclaredValue(**{"id": id, "name": id, "value": 54.0, "unit": "dBm"} | fields)
+
+
+def a_waiver(id: str = "W-1", requirement: str = "R-1", **fields: Any) -> Waiver:
+    """Return a requested waiver that runs out at the end of 2026."""
+    return Waiver(
+        **{
+            "id": id,
+            "requirement": requirement,
+            "permitted": ">= 19 dB",
+            "reason": "invented",
+            "expires_on": "2026-12-31",
+        }
+        | fields
+    )
+
+
+def a_budget(id: str = "B-1", **fields: Any) -> Budget:
+    """Return a gain budget of two blocks for the requirement R-1."""
+    lines = (
+        BudgetLine(position=1, block="LNA", parameter="gain", value=20.0, unit="dB"),
+        BudgetLine(position=2, block="MIX", parameter="gain", value=-7.0, unit="dB"),
+    )
+    return Budget(
+        **{"id": id, "requirements": ("R-1",), "quantity": a_quantity(), "law": "gain sum", "lines": lines}
+        | fields
+    )
+
+
+def a_status(requirement: str = "R-1", **fields: Any) -> RequirementStatus:
+    """Return the status of a requirement of which 3 of 3 points are proved."""
+    return RequirementStatus(
+        **{
+            "requirement": requirement,
+            "activities": (),
+            "standing": {Standing.ACCEPTED: 3},
+            "k": 3,
+            "n": 3,
+            "n_failing": 0,
+            "n_missing": 0,
+            "verdict": Verdict.PASS,
+            "compliance": Compliance.COMPLIANT,
+            "close_out": CloseOut.OPEN,
+            "close_out_reason": "no approval",
+            "label": Label.READY,
+            "governing": None,
+            "smallest_margin": None,
+            "unit": "dB",
+            "marginal": False,
+        }
+        | fields
     )
