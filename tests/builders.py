@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
+from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -309,3 +310,22 @@ def a_status(requirement: str = "R-1", **fields: Any) -> RequirementStatus:
         }
         | fields
     )
+
+
+def project_workbook(path: Path, **sheets: Sequence[Mapping[str, Any]]) -> Path:
+    """Write a project workbook: ``requirements=[{"ID": "R-1", ...}]`` is the sheet Requirements with these headers.
+
+    Underscores in sheet names become blanks. Headers are the keys of all rows in the order met.
+    """
+    from openpyxl import Workbook
+
+    book = Workbook()
+    book.remove(book.worksheets[0])
+    for name, rows in sheets.items():
+        sheet = book.create_sheet(name.replace("_", " ").capitalize())
+        headers = list(dict.fromkeys(header for row in rows for header in row))
+        sheet.append(headers)
+        for row in rows:
+            sheet.append([row.get(header) for header in headers])
+    book.save(path)
+    return path

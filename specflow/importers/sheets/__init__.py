@@ -1,0 +1,45 @@
+"""The sheets of the project workbook: one module a noun, each with its layout and its way from rows to documents.
+
+What may live here: ``sheet.py`` (what a sheet kind is), ``table.py`` (the header row and the rows below it), ``row.py``
+and ``cells.py`` (a cell, typed or refused), ``intake.py`` (what was read so far, references, duplicates), ``cycles.py``
+and ``leftovers.py`` (checks across rows), and one module a noun. A new sheet is one module and one line in ``SHEETS``.
+"""
+
+from specflow.importers.sheets import (
+    activities,
+    allocations,
+    blocks,
+    board_decisions,
+    change_records,
+    condition_maps,
+    conditions_sets,
+    declared_values,
+    items,
+    nonconformances,
+    parameters,
+    requirements,
+    uncertainty,
+    waivers,
+)
+from specflow.importers.sheets.sheet import Sheet
+
+#: In the order in which they are read: what others refer to comes first. The template has the same order, but for
+#: the sheets that most projects start with.
+SHEETS: tuple[Sheet, ...] = (
+    parameters.SHEET,
+    blocks.SHEET,
+    items.SHEET,
+    declared_values.SHEET,
+    conditions_sets.SHEET,
+    condition_maps.SHEET,
+    uncertainty.SHEET,
+    requirements.SHEET,
+    activities.SHEET,
+    allocations.SHEET,
+    nonconformances.SHEET,
+    waivers.SHEET,
+    change_records.SHEET,
+    *board_decisions.SHEETS,
+)
+
+__all__ = ["SHEETS", "Sheet"]

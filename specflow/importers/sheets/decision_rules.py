@@ -1,0 +1,141 @@
+"""Cells of a requirement that say how it is judged: decision rule, provers, test tolerance."""
+
+from __future__ import annotations
+
+import re
+
+from specflow.importers.sheets.intake import Intake, near
+from specflow.importers.sheets.row import SheetRow
+from specflow.model.base import code_key
+from specflow.model.block import Item
+from specflow.model.expression import Number
+from specflow.model.limit import Limit, TestTolerance
+from specflow.model.parameter import Parameter
+from specflow.model.requirement import DecisionRule, Provers, RuleName
+from specflow.units import convert, parse_quantity, parse_unit, split_quantity, tolerance_unit
+
+_RULE = re.compile(
+    r"^(?P<name>simple|guarded|four[- ]?way)\s*(?:w\s*=)?\s*(?P<factor>[0-9]+(?:\.[0-9]+)?)?\s*(?:[·*x]\s*)?U?$",
+    re.IGNORECASE,
+)
+_GREATEST = re.compile(r"^(?:U\s*<?=?\s*)?(?P<amount>.+?)\s*(?:[,;(]?\s*k\s*=\s*(?P<k>[0-9.]+)\s*\)?)?$")
+_PROVERS = re.compile(
+    r"^(?P<rule>any one|each of|number of)\s*:?\s*(?P<rest>.*?)\s*(?P<together>[,(]?\s*together\)?)?$",
+    re.IGNORECASE | re.DOTALL,
+)
+_STIMULUS = re.compile(r"\s*(?:on|to|of)?\s*(?:the\s+)?stimulus$", re.IGNORECASE)
+TIGHTENS = "tightens the limit"
+REFUSED = "not admissible"
+
+
+def decision_rule(row: SheetRow, limit: Limit | None, parameter: Parameter | None) -> DecisionRule:
+    """Read "simple", "guarded 1.0 U" or "four-way 1.0 U", and the greatest uncertainty that is admissible."""
+    text = row.text("decision_rule")
+    parts = _RULE.match(text) if text else None
+    if text and parts is None:
+        row.fault(
+            "decision_rule", f"{text!r} is no decision rule", "write simple, guarded 1.0 U or four-way 1.0 U"
+        )
+    name = RuleName.SIMPLE if parts is None else _rule_name(parts["name"])
+    factor = float(parts["factor"] or 1.0) if parts else 1.0
+    excess = row.one_of("excess_uncertainty", (REFUSED, TIGHTENS), REFUSED)
+    return DecisionRule(
+        name=name,
+        guard_factor=factor,
+        greatest_uncertainty=_greatest_uncertainty(row, limit, parameter),
+        excess_tightens=excess == TIGHTENS,
+    )
+
+
+def _rule_name(word: str) -> RuleName:
+    return RuleName.FOUR_WAY if word.casefold().startswith("four") else RuleName(word.casefold())
+
+
+def _greatest_uncertainty(row: SheetRow, limit: Limit | None, parameter: Parameter | None) -> float | None:
+    """U at k = 2 in the tolerance unit of the limit; another k is brought to 2."""
+    text = row.text("greatest_uncertainty")
+    parts = _GREATEST.match(text)
+    if not text or parts is None or parameter is None:
+        return None
+    quantity = row.attempt("greatest_uncertainty", lambda: parse_quantity(parts["amount"]))
+    if quantity is None:
+        return None
+    wanted = tolerance_unit(parse_unit(limit.unit if limit and limit.unit else parameter.unit))
+    value = row.attempt(
+        "greatest_uncertainty",
+        lambda: convert(
+            float(quantity.value), quantity.unit, wanted, log_factor=parameter.log_factor, difference=True
+        ),
+    )
+    factor = float(parts["k"] or 2)
+    if value is not None and not (float(value) > 0 and factor > 0):
+        row.fault(
+            "greatest_uncertainty", f"an uncertainty of {text} cannot be", "write an amount greater than 0"
+        )
+        return None
+    return None if value is None else float(value) * 2 / factor
+
+
+def provers(row: SheetRow, intake: Intake) -> Provers:
+    """Read "any one", "each of: SN1, SN2" or "number of: 3", with "together" where items may complete each other."""
+    text = row.text("proved_by")
+    if not text:
+        return Provers()
+    parts = _PROVERS.match(text)
+    if parts is None:
+        row.fault(
+            "proved_by",
+            f"{text!r} does not say who proves it",
+            "write any one, each of: SN1, SN2 or number of: 3",
+        )
+        return Provers()
+    together = parts["together"] is not None
+    rule = parts["rule"].casefold()
+    if rule == "each of":
+        return Provers(
+            rule="each of", items=_items(row, intake, parts["rest"]), may_complete_each_other=together
+        )
+    if rule == "number of":
+        return _number_of(row, parts["rest"], together)
+    return Provers(may_complete_each_other=together)
+
+
+def _number_of(row: SheetRow, text: str, together: bool) -> Provers:
+    if not text.isdecimal() or int(text) < 1:
+        row.fault("proved_by", f"{text!r} is no number of items", "write number of: 3")
+        return Provers()
+    return Provers(rule="number of", number=int(text), may_complete_each_other=together)
+
+
+def _items(row: SheetRow, intake: Intake, text: str) -> tuple[str, ...]:
+    names = tuple(part.strip() for part in re.split(r"[,;\n]", text) if part.strip())
+    if not names:
+        row.fault("proved_by", "no item is named", "write each of: SN1, SN2")
+    items = intake.all(Item)
+    known = {code_key(item.serial): item.serial for item in items} | {
+        code_key(item.id): item.id for item in items
+    }
+    for name in names:
+        if code_key(name) not in known and intake.spelling(Item, name) is None:
+            row.fault(
+                "proved_by",
+                f"there is no item or serial {name}" + near(name, known.values()),
+                "write ids or serials of items of the project, or add them to the sheet Items",
+                rule="workbook-unknown-reference",
+            )
+    return tuple(known.get(code_key(name), name) for name in names)
+
+
+def with_test_tolerance(row: SheetRow, limit: Limit) -> Limit:
+    """Return the limit with the test tolerance of its own column: "0.7 dB", "0.5 dB on the stimulus"."""
+    text = row.text("test_tolerance")
+    if not text:
+        return limit
+    amount = _STIMULUS.sub("", text)
+    found = row.attempt("test_tolerance", lambda: (parse_quantity(amount), split_quantity(amount)))
+    if found is None:
+        return limit
+    quantity, (_, unit) = found
+    place = "limit" if amount == text else "stimulus"
+    number = Number(text=repr(float(quantity.value)), unit=unit)
+    return limit.model_copy(update={"test_tolerance": TestTolerance(amount=number, place=place)})

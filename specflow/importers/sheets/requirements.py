@@ -1,0 +1,286 @@
+"""The sheet of requirements: one limit a row, typed as engineers write it."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from specflow.errors import UnitError
+from specflow.importers.sheets.decision_rules import decision_rule, provers, with_test_tolerance
+from specflow.importers.sheets.intake import Intake, near
+from specflow.importers.sheets.parameters import known_parameter
+from specflow.importers.sheets.plans import plan_in_row
+from specflow.importers.sheets.requirement_columns import LAYOUT
+from specflow.importers.sheets.row import SheetRow
+from specflow.importers.sheets.sheet import Sheet
+from specflow.limits import alternatives, limit_words, parse_condition, parse_limit
+from specflow.model.base import MAX_CODE_LENGTH, code_key
+from specflow.model.block import Block, Tier
+from specflow.model.conditions import ConditionsSet
+from specflow.model.limit import Limit, LimitState, MeasuredIn
+from specflow.model.parameter import Parameter, QuantityIdentity
+from specflow.model.requirement import Obligation, OpenValue, Requirement, Source
+from specflow.parameters import Candidate, suits
+from specflow.units import ONE, convert, format_quantity, parse_quantity, parse_unit
+
+_ALWAYS = frozenset({"", "u", "always", "all", "unconditional"})
+_NONE = frozenset({"none", "no conditions"})
+
+
+def read(rows: Sequence[SheetRow], intake: Intake) -> None:
+    """Add one requirement a row, with the activities its shorthand columns plan."""
+    for row in rows:
+        requirement = _requirement(row, intake)
+        if requirement is None:
+            continue
+        intake.add(requirement, row.stated())
+        plan_in_row(row, requirement, intake)
+        parameter = intake.dictionary.get(requirement.quantity.parameter)
+        words = limit_words(requirement.limit, parameter)
+        intake.echo(requirement.id, words)
+
+
+def _requirement(row: SheetRow, intake: Intake) -> Requirement | None:
+    named = known_parameter(row, "parameter", intake)
+    parameter = named.parameter if named else None
+    limit = _limit(row, parameter)
+    block = _block(row, intake)
+    quantity = _quantity(row, intake, named, limit, block)
+    parents, reason = _parents(row, intake)
+    rule = decision_rule(row, limit, parameter)
+    fields = {
+        "title": row.prose("title") or (parameter.title if parameter else ""),
+        "statement": row.prose("statement"),
+        "source": Source(
+            document=row.prose("source_document"),
+            issue=row.prose("source_issue"),
+            paragraph=row.prose("source_paragraph"),
+        ),
+        "kind": row.prose("kind") or "performance",
+        "tier": row.choice("tier", Tier, block.tier if block else Tier.SYSTEM),
+        "obligation": row.choice("obligation", Obligation, Obligation.SHALL),
+        "open_value": _open_value(row, limit),
+        "conditions": _conditions(row, intake),
+        "applicability": _applicability(row),
+        "provers": provers(row, intake),
+        "met_by_lower_level": row.yes("met_by_lower_level", False),
+        "needs_allocation": row.yes("needs_allocation", None),
+        **{name: row.prose(name) for name in _PROSE},
+    }
+    _check_not_applicable(row)
+    if limit is None or quantity is None or not row.sound:
+        return None
+    return row.build(
+        Requirement,
+        id=row.subject,
+        block=row.subject if block is None else block.id,
+        quantity=quantity,
+        limit=with_test_tolerance(row, limit),
+        parents=parents,
+        derived_reason=reason,
+        decision_rule=rule,
+        origin=row.origin("limit"),
+        **fields,
+    )
+
+
+_PROSE = (
+    "owner",
+    "not_applicable_reason",
+    "not_applicable_approver",
+    "rationale",
+    "assumptions",
+    "priority",
+    "note",
+)
+
+
+def _limit(row: SheetRow, parameter: Parameter | None) -> Limit | None:
+    """The limit; a bare number needs the unit column, unless the parameter is a plain number."""
+    text = row.needed("limit")
+    hint = row.text("unit") or row.units.get("limit", "")
+    if hint:
+        row.attempt("unit" if row.text("unit") else "limit", lambda: parse_unit(hint))
+    if not text or parameter is None or (not row.sound and "unit" in row.spoiled):
+        return None
+    if not hint and parse_unit(parameter.unit) == ONE:
+        hint = parameter.unit
+    limit = row.attempt("limit", lambda: parse_limit(text, unit_hint=hint, parameter=parameter))
+    if limit is None or (not hint and _lacks_unit(row, text, parameter)):
+        return None
+    _check_kind(row, limit, parameter)
+    return limit
+
+
+def _lacks_unit(row: SheetRow, text: str, parameter: Parameter) -> bool:
+    """Whether the text reads only because the parameter lends its unit, which would be a guess."""
+    silent = parameter.model_copy(update={"unit": ""})
+    return row.attempt("limit", lambda: parse_limit(text, parameter=silent)) is None
+
+
+def _check_kind(row: SheetRow, limit: Limit, parameter: Parameter) -> None:
+    """Refuse a limit whose unit cannot be one of its parameter. Of alternatives, one member of its kind is enough."""
+    units = (
+        [limit.unit] if limit.unit else [one.limit.unit for one in alternatives(limit) if not one.quantity]
+    )
+    units = [unit for unit in units if unit]
+    if units and not any(suits(parameter, unit) for unit in units):
+        row.fault(
+            "limit",
+            f"the limit is in {' and '.join(units)}, but {parameter.title} ({parameter.key}) is in {parameter.unit}",
+            f"write the limit in a unit such as {parameter.unit}, or name the parameter that is meant",
+            rule="workbook-unit-kind",
+        )
+
+
+def _block(row: SheetRow, intake: Intake) -> Block | None:
+    """The block that is named; the system where none is named and there is only one."""
+    code = row.text("block")
+    if code:
+        intake.link(row, "block", Block, code)
+        return intake.find(Block, code)
+    roots = [block for block in intake.all(Block) if block.parent is None]
+    if len(roots) == 1:
+        intake.note(
+            row,
+            "block",
+            f"no block is named; {roots[0].id} ({roots[0].name}) was taken, the only block without a parent",
+            "write the id of the block that the limit is on",
+            rule="workbook-default-taken",
+        )
+        return roots[0]
+    row.fault("block", "no block is named", "write the id of the block that the limit is on")
+    return None
+
+
+def _quantity(
+    row: SheetRow, intake: Intake, named: Candidate | None, limit: Limit | None, block: Block | None
+) -> QuantityIdentity | None:
+    """The quantity identity; a statistic or plane in the parameter's cell ("spurious (TRP)") counts as stated."""
+    if named is None:
+        return None
+    parameter = named.parameter
+    planes = (*(plane.name for plane in block.planes), *parameter.planes) if block else parameter.planes
+    return QuantityIdentity(
+        parameter=parameter.key,
+        plane=_among(row, intake, "plane", planes) or named.plane,
+        statistic=_among(row, intake, "statistic", parameter.statistics) or named.statistic,
+        bandwidth_hz=_bandwidth(row, intake, parameter, limit),
+        polarisation=row.text("polarisation"),
+    )
+
+
+def _among(row: SheetRow, intake: Intake, column: str, known: Sequence[str]) -> str:
+    """The text of a cell, spelled as the dictionary or the block spells it; another word is doubtful, not wrong."""
+    text = row.text(column)
+    spelled = {code_key(one): one for one in known}.get(code_key(text))
+    if text and known and spelled is None:
+        intake.note(
+            row,
+            column,
+            f"{row.layout.column(column).title} {text!r} is new here" + near(text, known),
+            "only evidence with the same word will match; known: " + ", ".join(dict.fromkeys(known)),
+            rule="workbook-unknown-word",
+        )
+    return spelled or text
+
+
+def _bandwidth(row: SheetRow, intake: Intake, parameter: Parameter, limit: Limit | None) -> float | None:
+    """The reference bandwidth in Hz: as stated, as the unit of the limit says, or as the limit is measured in."""
+    stated = (
+        row.attempt("bandwidth", lambda: _hertz(row.text("bandwidth"))) if row.text("bandwidth") else None
+    )
+    implied = None if limit is None else row.attempt("limit", lambda: _implied_bandwidth(limit))
+    if stated is not None and implied is not None and abs(stated - implied) > 1e-9 * implied:
+        row.fault(
+            "bandwidth",
+            f"the reference bandwidth is {row.text('bandwidth')}, but the limit {limit.text if limit else ''} "
+            f"is per {format_quantity(implied, parse_unit('Hz'))}",
+            "state the same bandwidth in both, or leave this cell empty",
+        )
+    found = stated if stated is not None else implied
+    if (
+        found is None
+        and parameter.needs_bandwidth
+        and limit is not None
+        and limit.state is not LimitState.TBD
+    ):
+        intake.note(
+            row,
+            "bandwidth",
+            f"{parameter.title} means little without a reference bandwidth, and none is stated",
+            "write it in the column Reference bandwidth, as 1 MHz, or in the unit of the limit, as dBm/MHz",
+            rule="workbook-no-bandwidth",
+        )
+    return found
+
+
+def _implied_bandwidth(limit: Limit) -> float | None:
+    if limit.unit and (bandwidth := parse_unit(limit.unit).bandwidth_hz) is not None:
+        return bandwidth
+    if isinstance(limit.tree, MeasuredIn):
+        return _hertz(f"{limit.tree.bandwidth.text} {limit.tree.bandwidth.unit}")
+    return None
+
+
+def _hertz(text: str) -> float:
+    quantity = parse_quantity(text)
+    hertz = float(convert(float(quantity.value), quantity.unit, parse_unit("Hz")))
+    if not hertz > 0:
+        raise UnitError(f"a bandwidth of {text} cannot be", hint="write a bandwidth greater than 0, as 1 MHz")
+    return hertz
+
+
+def _parents(row: SheetRow, intake: Intake) -> tuple[tuple[str, ...], str]:
+    reason = row.prose("derived_reason")
+    if code_key(row.text("parents")) == "derived":
+        if not reason:
+            row.fault("derived_reason", "a derived requirement needs its reason", "say why it is there")
+        return (), reason
+    return intake.references(row, "parents", Requirement), reason
+
+
+def _conditions(row: SheetRow, intake: Intake) -> str | None:
+    return (
+        None
+        if code_key(row.text("conditions")) in _NONE
+        else intake.reference(row, "conditions", ConditionsSet)
+    )
+
+
+def _applicability(row: SheetRow) -> str:
+    """Unconditional is ""; anything else is an expression over conditions and declared values, checked here."""
+    text = row.text("applicability").removeprefix("C:").strip()
+    if code_key(text) in _ALWAYS:
+        return ""
+    row.attempt("applicability", lambda: parse_condition(text))
+    return text
+
+
+def _check_not_applicable(row: SheetRow) -> None:
+    if row.prose("not_applicable_reason") and not row.prose("not_applicable_approver"):
+        row.fault(
+            "not_applicable_approver",
+            "a requirement is set not applicable, but nobody is named who approved that",
+            "name the approver, or empty the reason",
+        )
+
+
+def _open_value(row: SheetRow, limit: Limit | None) -> OpenValue | None:
+    value = OpenValue(owner=row.prose("tbr_owner"), due=row.date("tbr_due"), action=row.prose("tbr_action"))
+    firm = limit is None or limit.state is LimitState.FIRM
+    return None if firm and value == OpenValue() else value
+
+
+def identify(row: SheetRow, intake: Intake) -> str:
+    """The id; short enough for the ids of its activities."""
+    code = row.needed("id")
+    if len(code) > MAX_CODE_LENGTH - len("/A99"):
+        row.fault(
+            "id",
+            f"the id {code[:20]}... is too long",
+            f"use at most {MAX_CODE_LENGTH - len('/A99')} characters",
+        )
+    return code
+
+
+SHEET = Sheet(LAYOUT, Requirement, read, identify)

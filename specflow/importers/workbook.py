@@ -1,0 +1,181 @@
+"""The project workbook: sheets found by name, read into documents, with a finding for every cell that is not right."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Sequence
+from pathlib import Path
+
+from specflow.errors import FileError
+from specflow.importers.readers import Grid, GridFile, is_blank, open_grids
+from specflow.importers.sheets import SHEETS, Sheet
+from specflow.importers.sheets.cycles import refuse_cycles
+from specflow.importers.sheets.intake import Intake
+from specflow.importers.sheets.leftovers import leave_out_orphans
+from specflow.importers.sheets.plans import complete_plans
+from specflow.importers.sheets.row import SheetRow
+from specflow.importers.sheets.table import find_header, missing_header, read_table
+from specflow.model.draft import Draft
+from specflow.model.finding import Finding, Severity
+from specflow.model.origin import Origin
+from specflow.model.sheet import GUIDE, header_key
+from specflow.model.snapshot import Snapshot
+from specflow.parameters import Dictionary
+
+_NUMBERED = re.compile(r"^[0-9]+|[0-9]+$")
+Found = tuple[Sheet, Grid]
+
+
+def read_workbook(path: str | Path, snapshot: Snapshot, dictionary: Dictionary) -> Draft:
+    """Read a project workbook (or one sheet of it as csv) into a draft.
+
+    References may point into the workbook or to what ``snapshot`` has. Raises FileError for a file that cannot be read
+    or in which no sheet is known; all else is a finding, and a row that is refused gives no document.
+    """
+    file = open_grids(path)
+    intake = Intake(snapshot, dictionary)
+    tables = [
+        (sheet, rows)
+        for sheet, grid in _recognised(file, intake.findings)
+        if (rows := _rows(sheet, grid, file.fingerprint.sha256, intake.findings)) is not None
+    ]
+    for sheet, rows in tables:
+        sheet.identify_rows(rows, intake)
+    for sheet, rows in tables:
+        sheet.read(rows, intake)
+    refuse_cycles(intake)
+    leave_out_orphans(intake)
+    complete_plans(intake)
+    documents = [document for noun in intake.documents.values() for document in noun.values()]
+    if not documents and not any(finding.severity is Severity.ERROR for finding in intake.findings):
+        intake.findings.append(_nothing_to_load(file))
+    kept = {getattr(document, "id", "") for document in documents}
+    return Draft(
+        documents=documents,
+        findings=_in_order(intake.findings, [grid.name for grid in file]),
+        echoes={code: words for code, words in intake.echoes.items() if code in kept},
+    )
+
+
+def _recognised(file: GridFile, findings: list[Finding]) -> list[Found]:
+    """The sheets known by name, in the order in which they are read; judged by headers where no name is known."""
+    known = {header_key(name): sheet for sheet in SHEETS for name in sheet.names()}
+    named: list[Found] = []
+    others: list[Grid] = []
+    for grid in file:
+        name = header_key(Path(grid.name).stem if grid.name == grid.file else grid.name)
+        sheet = known.get(name) or known.get(_NUMBERED.sub("", name))
+        if sheet is not None:
+            named.append((sheet, grid))
+        elif any(not is_blank(value) for row in grid.rows for value in row) and name != header_key(GUIDE):
+            others.append(grid)
+    if not named:
+        named, others = _by_headers(others, findings)
+    if not named:
+        raise _nothing_known(file)
+    findings.extend(_not_read(grid) for grid in others)
+    return sorted(named, key=lambda found: SHEETS.index(found[0]))
+
+
+def _by_headers(grids: Sequence[Grid], findings: list[Finding]) -> tuple[list[Found], list[Grid]]:
+    """Sheets whose headers are those of one sheet kind better than of any other, and the rest."""
+    named: list[Found] = []
+    others: list[Grid] = []
+    for grid in grids:
+        fits = [
+            (len(header.columns), sheet) for sheet in SHEETS if (header := find_header(grid, sheet.layout))
+        ]
+        most = max((count for count, _ in fits), default=0)
+        best = [sheet for count, sheet in fits if count == most]
+        if most < 3 or len(best) != 1:
+            others.append(grid)
+            continue
+        named.append((best[0], grid))
+        findings.append(
+            _about(
+                grid,
+                f"read as the sheet {best[0].layout.title}, judged by its headers",
+                f"call it {best[0].layout.title} to leave no doubt",
+                "workbook-sheet-by-headers",
+            )
+        )
+    return named, others
+
+
+def _rows(sheet: Sheet, grid: Grid, sha256: str, findings: list[Finding]) -> list[SheetRow] | None:
+    findings.extend(_about(grid, note, "", "workbook-reading") for note in grid.notes)
+    if grid.hidden:
+        findings.append(
+            _about(
+                grid,
+                f"the sheet {grid.name} is hidden and was not read",
+                "show the sheet and load again, or delete it",
+                "workbook-hidden-sheet",
+                Severity.ERROR,
+            )
+        )
+        return None
+    header = find_header(grid, sheet.layout)
+    if header is not None:
+        return read_table(grid, sheet.layout, header, sha256, findings)
+    if any(not is_blank(value) for row in grid.rows for value in row):
+        findings.append(missing_header(grid, sheet.layout, sha256))
+    return None
+
+
+def _nothing_known(file: GridFile) -> FileError:
+    names = ", ".join(sheet.layout.title for sheet in SHEETS)
+    there = ", ".join(repr(grid.name) for grid in file)
+    headers = ", ".join(
+        column.title for column in next(s for s in SHEETS if s.layout.noun == "requirement").layout.required
+    )
+    return FileError(
+        f"no sheet of a project workbook is in this file (it has {there or 'none'})",
+        where=file.fingerprint.name,
+        hint=f"sheets are found by name: {names}; a sheet of another name needs at least the headers {headers}",
+    )
+
+
+def _not_read(grid: Grid) -> Finding:
+    names = ", ".join(sheet.layout.title for sheet in SHEETS)
+    return _about(
+        grid,
+        f"the sheet {grid.name} is not known and was not read",
+        f"known: {names}",
+        "workbook-unknown-sheet",
+    )
+
+
+def _nothing_to_load(file: GridFile) -> Finding:
+    return _about(
+        file[0],
+        "no row to load was found (rows marked as examples are not loaded)",
+        "fill in the sheets below their headers and load again",
+        "workbook-nothing-to-load",
+        Severity.WARNING,
+    )
+
+
+def _about(grid: Grid, message: str, remedy: str, rule: str, severity: Severity = Severity.INFO) -> Finding:
+    return Finding(
+        rule=rule,
+        severity=severity,
+        subject=grid.name,
+        subject_kind="sheet",
+        message=message,
+        remedy=remedy,
+        origin=Origin(file=grid.file, sheet="" if grid.name == grid.file else grid.name),
+    )
+
+
+def _in_order(findings: Sequence[Finding], sheets: Sequence[str]) -> list[Finding]:
+    """Findings in the order of the file: sheet, row, column."""
+
+    def place(finding: Finding) -> tuple[int, int, int]:
+        origin = finding.origin
+        if origin is None:
+            return (0, 0, 0)
+        sheet = sheets.index(origin.sheet) if origin.sheet in sheets else 0
+        return (sheet, origin.row or 0, origin.column or 0)
+
+    return sorted(findings, key=place)
