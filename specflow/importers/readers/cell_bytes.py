@@ -198,7 +198,10 @@ class _Cells:
         blank = (after == ord("/")) | ((after == ord(">")) & (first == ord("<")))
         self.valued = (has_tag & ~blank) | inline
         self.cached = has_tag & (self.text | ~blank)
-        self._check_shared_texts(self.shared & self.valued & (after == ord(">")))
+        shared = self.shared & self.valued & ~inline
+        if (after[shared] != ord(">")).any():
+            raise Irregular
+        self._check_shared_texts(shared)
 
     def _check_shared_texts(self, which: Flags) -> None:
         """The bulk reader takes whatever is no number for shared text 0."""

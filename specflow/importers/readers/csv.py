@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import io
+import re
 from collections.abc import Callable
 
 from specflow.errors import FileError
@@ -66,10 +67,9 @@ def _comment_rows(lines: list[str]) -> set[int]:
         found.add(1)
     if not first.startswith("%"):
         found = {number for number in found if not lines[number - 1].lstrip().startswith("%")}
-    marked = [number for number in found if _is_data(_comment_text(lines[number - 1]) or "")]
-    if marked and 2 * len(marked) > sum(map(_is_data, lines)) + len(marked):
-        return found - set(marked)  # the mark is part of the first column: "#12", "#13"
-    return found
+    counted = {number for number in found if re.match(r"#[0-9]", lines[number - 1].lstrip())}
+    rows = sum(_is_data(line) for number, line in enumerate(lines, start=1) if number not in found)
+    return found - counted if len(counted) > rows else found  # "#12", "#13" are names in the first column
 
 
 def _comment_text(line: str) -> str | None:

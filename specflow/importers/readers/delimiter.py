@@ -115,7 +115,9 @@ def _refuse_decimal_comma(sample: Sequence[str], width: int) -> None:
     """``1,5,2,7`` under two titles: numbers without a decimal point, twice as many as there are titles."""
     rows = [split(line, ",") for line in sample]
     body = [row for row in rows if len(row) == width and all(map(is_number, row))]
+    if len(body) < max(2, len(rows) // 2):
+        return
     titles = [row for row in rows if not any(map(is_number, row))]
     whole = all(re.fullmatch(r"[+\-−]?[0-9]+", field) for row in body for field in row)
-    if body and whole and width % 2 == 0 and titles and len(titles[-1]) == width // 2:
+    if whole and width % 2 == 0 and titles and len(titles[-1]) == width // 2:
         raise AmbiguousComma

@@ -1,0 +1,182 @@
+from __future__ import annotations
+
+from pathlib import Path
+
+import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+
+from specflow.importers.readers import Grid, open_grids
+from specflow.importers.readers.delimiter import find_layout
+from tests.importers.readers.workbooks import refused
+
+
+def grid_of(path: Path, content: str | bytes) -> Grid:
+    path.write_bytes(content.encode() if isinstance(content, str) else content)
+    return open_grids(path)[0]
+
+
+@pytest.mark.parametrize("delimiter", [",", ";", "\t", "|", "  ", " \t "])
+def test_fields_are_parted_by_what_parts_them(tmp_path: Path, delimiter: str) -> None:
+    lines = [("f_GHz", "G_dB", "NF_dB"), ("1.5", "20.25", "0.8"), ("2.5", "-20", "1e-1")]
+    grid = grid_of(tmp_path / "a.csv", "\n".join(delimiter.join(line) for line in lines) + "\n")
+    assert grid.rows == [list(line) for line in lines]
+    assert grid.column_floats(2, 2, 4)[0].tolist() == [20.25, -20.0]
+
+
+@pytest.mark.parametrize("delimiter", [";", "\t"])
+def test_decimal_commas_are_found(tmp_path: Path, delimiter: str) -> None:
+    grid = grid_of(tmp_path / "a.csv", f"f{delimiter}G\n1,5{delimiter}20,25\n2{delimiter}-3,5\n")
+    assert grid.decimal == ","
+    assert grid.rows[1] == ["1,5", "20,25"]
+    assert grid.column_floats(1, 2, 4)[0].tolist() == [1.5, 2.0]
+    assert grid.column_floats(2, 2, 4)[0].tolist() == [20.25, -3.5]
+
+
+def test_comma_that_may_stand_between_thousands_is_ambiguous(tmp_path: Path) -> None:
+    grid = grid_of(tmp_path / "a.csv", "f;G\n1,250;20\n2,500;30\n")
+    assert grid.decimal == ""
+    assert grid.column_floats(1, 2, 4)[1] == [2, 3]
+    assert grid.column_floats(2, 2, 4)[0].tolist() == [20.0, 30.0]
+
+
+@pytest.mark.parametrize("text", ["Gain\n12,5\n13,7\n", "f,G\n1,5,20,2\n2,5,21,3\n"])
+def test_comma_as_separator_and_decimal_mark_is_refused(tmp_path: Path, text: str) -> None:
+    (tmp_path / "a.csv").write_text(text)
+    assert "part both the fields and the decimals" in refused(lambda: open_grids(tmp_path / "a.csv"))
+
+
+def test_whole_numbers_under_their_own_titles_are_not_ambiguous(tmp_path: Path) -> None:
+    assert grid_of(tmp_path / "a.csv", "run,state\n1,5\n2,7\n").rows[1] == ["1", "5"]
+
+
+def test_header_and_body_may_have_different_separators(tmp_path: Path) -> None:
+    text = "Frequency (GHz),    Hot Power (dB),  Cold Power (dB)\r\n0 \t -28.01 \t -28.9 \r\n0.04 \t -7.39 \t -7.39 \r\n"
+    grid = grid_of(tmp_path / "a.dat", text)
+    assert grid.rows == [
+        ["Frequency (GHz)", "Hot Power (dB)", "Cold Power (dB)"],
+        ["0", "-28.01", "-28.9"],
+        ["0.04", "-7.39", "-7.39"],
+    ]
+
+
+def test_header_words_among_runs_of_blanks(tmp_path: Path) -> None:
+    grid = grid_of(tmp_path / "a.dat", "Antenna gain of run 3\nFreq (GHz)   Gain (dB)\n 1.0   20.5\n 2.0   21.5\n")
+    assert grid.rows == [["Antenna gain of run 3"], ["Freq (GHz)", "Gain (dB)"], ["1.0", "20.5"], ["2.0", "21.5"]]
+
+
+def test_mark_carriage_returns_and_missing_last_newline(tmp_path: Path) -> None:
+    grid = grid_of(tmp_path / "a.csv", b"\xef\xbb\xbfTemperature,Resistance\r\n16.18,200.04\r\n17.26,200.05")
+    assert grid.rows[0] == ["Temperature", "Resistance"]
+    assert grid.rows[2] == ["17.26", "200.05"]
+    assert grid.notes == ()
+
+
+@pytest.mark.parametrize(
+    ("encoding", "note"),
+    [
+        ("utf-16", "the text was read as UTF-16"),
+        ("utf-16-le", "the text was read as UTF-16-LE"),
+        ("utf-16-be", "the text was read as UTF-16-BE"),
+        ("utf-32", "the text was read as UTF-32"),
+        ("cp1252", "the text is not UTF-8; it was read as Windows-1252"),
+    ],
+)
+def test_encodings_are_found_and_reported(tmp_path: Path, encoding: str, note: str) -> None:
+    grid = grid_of(tmp_path / "a.csv", "Temperature (°C),Density (dBµV/m)\n25,30\n".encode(encoding))
+    assert grid.rows[0] == ["Temperature (°C)", "Density (dBµV/m)"]
+    assert grid.notes == (note,)
+
+
+def test_nul_bytes_are_left_out_and_counted(tmp_path: Path) -> None:
+    grid = grid_of(tmp_path / "a.csv", b"Ref\0,0.00dBm\0\r\n\0\r\nf\0,P\0\r\n1\0,2\0\r\n3\0,4\0\r\n")
+    assert grid.notes == ("9 NUL characters were left out",)
+    assert grid.rows == [["Ref", "0.00dBm"], [], ["f", "P"], ["1", "2"], ["3", "4"]]
+
+
+def test_row_numbers_are_line_numbers(tmp_path: Path) -> None:
+    grid = grid_of(tmp_path / "a.csv", 'title\n\n"two\nlines",x\n  \n1,2\n')
+    assert grid.value(1, 1) == "title"
+    assert grid.rows[1] == []
+    assert grid.value(3, 1) == "two\nlines"
+    assert grid.rows[3:5] == [[], []]
+    assert grid.value(6, 2) == "2"
+    assert grid.where(6, 2) == "a.csv, B6"
+
+
+def test_quotes_protect_delimiters(tmp_path: Path) -> None:
+    grid = grid_of(tmp_path / "a.csv", '"Power, peak (dBm)", "say ""max"""\n1.5, 2\n')
+    assert grid.rows[0] == ["Power, peak (dBm)", 'say "max"']
+
+
+def test_unpaired_quotes_are_plain_characters(tmp_path: Path) -> None:
+    grid = grid_of(tmp_path / "a.csv", 'dish,gain\n12" dish,30.5\n"open,31\n3,32\n')
+    assert grid.rows[1:] == [['12" dish', "30.5"], ['"open', "31"], ["3", "32"]]
+    assert grid.notes == ("the quotes are not in pairs; they were read as plain characters",)
+
+
+def test_comment_lines_are_marked_and_their_fields_parted(tmp_path: Path) -> None:
+    grid = grid_of(tmp_path / "a.csv", "# digitiser 3\n#\n# Frequency [Hz],Gain [dB]\n! note\n0,1.5\n1,2.5\n")
+    assert grid.comment_rows == {1, 2, 3, 4}
+    assert grid.rows[:4] == [["digitiser 3"], [], ["Frequency [Hz]", "Gain [dB]"], ["note"]]
+
+
+def test_percent_begins_a_comment_only_where_the_file_begins_so(tmp_path: Path) -> None:
+    assert grid_of(tmp_path / "a.csv", "EVM,P\n% rms,dBm\n3.1,20\n").rows[1] == ["% rms", "dBm"]
+    assert grid_of(tmp_path / "b.csv", "% EVM,P\n3.1,20\n4.1,20\n").comment_rows == {1}
+    assert grid_of(tmp_path / "c.csv", "%,dB\n3.1,20\n").comment_rows == frozenset()
+
+
+def test_mark_that_begins_every_row_is_no_comment(tmp_path: Path) -> None:
+    grid = grid_of(tmp_path / "a.csv", "run,P\n#1,45.2\n#2,45.3\n#3,45.1\n")
+    assert grid.comment_rows == frozenset()
+    assert grid.rows[1] == ["#1", "45.2"]
+
+
+def test_separator_line_is_obeyed(tmp_path: Path) -> None:
+    grid = grid_of(tmp_path / "a.csv", "sep=;\nf;G\n1,5;2,5\n")
+    assert grid.rows[1:] == [["f", "G"], ["1,5", "2,5"]]
+    assert grid.comment_rows == {1}
+
+
+def test_empty_fields_keep_their_columns(tmp_path: Path) -> None:
+    assert grid_of(tmp_path / "a.csv", "a,b,c\n1,,3\n,,\n4,5,6\n").rows[1:3] == [["1", "", "3"], ["", "", ""]]
+    assert grid_of(tmp_path / "a.tsv", "a\tb\tc\n1\t\t3\n4\t5\t6\n").rows[1] == ["1", "", "3"]
+
+
+def test_single_column_is_read(tmp_path: Path) -> None:
+    assert grid_of(tmp_path / "a.csv", "Gain (dB)\n1.5\n2.5\n").column_floats(1, 2, 4)[0].tolist() == [1.5, 2.5]
+
+
+def test_text_columns_are_not_parted_at_their_blanks(tmp_path: Path) -> None:
+    grid = grid_of(tmp_path / "a.tsv", "mode\tP\nlow band, wide\t1.5\nhigh band, wide\t2.5\n")
+    assert grid.rows[1] == ["low band, wide", "1.5"]
+
+
+@pytest.mark.parametrize(
+    ("content", "what"),
+    [
+        (b"\n \n\t\r\n", "nothing but blanks"),
+        (b"PK\x03\x04abc", "a workbook or archive with the ending of a text file"),
+        (b"\x01\x02\x03\x04\x05binary\x06\x07", "no text file"),
+        (b"\xff\xfea\x00\x00\xd8", "should be utf-16"),
+    ],
+)
+def test_what_is_no_table_is_refused(tmp_path: Path, content: bytes, what: str) -> None:
+    (tmp_path / "a.csv").write_bytes(content)
+    assert what in refused(lambda: open_grids(tmp_path / "a.csv"))
+
+
+numbers = st.floats(allow_nan=False, allow_infinity=False, width=32).map(repr)
+
+
+@given(
+    st.lists(st.lists(numbers, min_size=3, max_size=3), min_size=3, max_size=20),
+    st.sampled_from([(",", "."), (";", "."), (";", ","), ("\t", ","), ("\t", "."), ("  ", "."), (" ", ",")]),
+)
+def test_number_tables_are_parted_whatever_the_marks(table: list[list[str]], marks: tuple[str, str]) -> None:
+    delimiter, decimal = marks
+    lines = [delimiter.join(field.replace(".", decimal) for field in row) for row in table]
+    layout = find_layout(["f" + delimiter + "G" + delimiter + "NF", *lines])
+    assert layout.delimiter == delimiter[0]
+    assert layout.width == 3
