@@ -8,12 +8,12 @@ import re
 from specflow.errors import UnitError
 from specflow.units.spelling import repaired
 
-_PLAIN = re.compile(r"^[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?$")
-_GROUPED_BY_SPACE = re.compile(r"^([+-]?\d{1,3}(?:[ '’]\d{3})+)((?:[.,]\d+)?)$")
-_GROUPED_BY_COMMA = re.compile(r"^[+-]?\d{1,3}(?:,\d{3})+(?:\.\d+)?$")
-_GROUPED_BY_POINT = re.compile(r"^[+-]?\d{1,3}(?:\.\d{3})+(?:,\d+)?$")
-_DECIMAL_COMMA = re.compile(r"^[+-]?\d*,\d+(?:[eE][+-]?\d+)?$")
-_EITHER = re.compile(r"^[+-]?[1-9]\d{0,2},\d{3}$")  # "1,234": a decimal, or a thousand
+_PLAIN = re.compile(r"^(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?$")
+_GROUPED_BY_SPACE = re.compile(r"^(\d{1,3}(?:[ '’]\d{3})+)((?:[.,]\d+)?)$")
+_GROUPED_BY_COMMA = re.compile(r"^\d{1,3}(?:,\d{3})+(?:\.\d+)?$")
+_GROUPED_BY_POINT = re.compile(r"^\d{1,3}(?:\.\d{3})+(?:,\d+)?$")
+_DECIMAL_COMMA = re.compile(r"^\d*,\d+(?:[eE][+-]?\d+)?$")
+_EITHER = re.compile(r"^[1-9]\d{0,2},\d{3}$")  # "1,234": a decimal, or a thousand
 
 
 def parse_number(text: str, *, decimal_comma: bool | None = None) -> float:
