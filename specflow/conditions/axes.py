@@ -100,7 +100,7 @@ class NumericAxis:
     """Numbers: ``values`` (m,) ascending; value i is served by actuals from ``low[i]`` to ``high[i]``, slack
     included.
 
-    ``scale`` (m,) is what distances are measured in, ``typed`` (m,) the values as they were required (with a
+    ``scale`` is what distances are measured in, ``typed`` (m,) the values as they were required (with a
     ``period`` of 360° ``values`` are within one turn). With an ``extent`` the single interval is a whole
     range.
     """
@@ -111,7 +111,7 @@ class NumericAxis:
     typed: Floats
     low: Floats
     high: Floats
-    scale: Floats
+    scale: float
     period: float = 0.0
     extent: Extent | None = None
 
@@ -198,7 +198,7 @@ class NumericAxis:
             offset = np.mod(offset + self.period / 2, self.period) - self.period / 2
         actual = self.values[codes] + offset
         inside = (actual >= self.low[codes]) & (actual <= self.high[codes])
-        return np.asarray(np.where(inside, np.abs(offset) / self.scale[codes], np.inf))
+        return np.asarray(np.where(inside, np.abs(offset) / self.scale, np.inf))
 
     @property
     def reach(self) -> float:

@@ -99,7 +99,7 @@ def _value_axis(conditions: ConditionsSet, dimension: Dimension, typed: Floats) 
     tolerances = _tolerances(dimension, values)
     forgiven = slack(values, tolerances)
     low, high = values - tolerances - forgiven, values + tolerances + forgiven
-    scale = tolerances + np.maximum(forgiven, 1e-300)
+    scale = float(np.max(tolerances)) or float(np.max(forgiven)) or 1.0
     rule = dimension.rule
     if rule is not MatchingRule.WITHIN:
         if period:
@@ -107,7 +107,7 @@ def _value_axis(conditions: ConditionsSet, dimension: Dimension, typed: Floats) 
                 f"{dimension.name} goes round: nothing lies beyond", where=str(conditions.id)
             )
         spread = float(values[-1] - values[0]) or 1.0
-        scale = np.where(tolerances > 0, scale, spread)
+        scale = float(np.max(tolerances)) or spread
     if rule in (MatchingRule.AT_OR_ABOVE, MatchingRule.OUTWARD):
         high[-1 if rule is MatchingRule.OUTWARD else slice(None)] = np.inf
     if rule in (MatchingRule.AT_OR_BELOW, MatchingRule.OUTWARD):
@@ -126,8 +126,9 @@ def _span_axis(conditions: ConditionsSet, dimension: Dimension, span: Span) -> N
     if dimension.rule in (MatchingRule.AT_OR_BELOW, MatchingRule.OUTWARD):
         low = np.array([-np.inf])
     middle = np.array([(span.low + span.high) / 2])
-    scale = np.array([span.high - span.low])
-    return NumericAxis(dimension.name, dimension.unit, middle, middle, low, high, scale, period, extent)
+    return NumericAxis(
+        dimension.name, dimension.unit, middle, middle, low, high, span.high - span.low, period, extent
+    )
 
 
 def _period(conditions: ConditionsSet, dimension: Dimension) -> float:

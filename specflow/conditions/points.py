@@ -70,7 +70,7 @@ class Points:
     @cached_property
     def is_full(self) -> bool:
         """Whether every combination of axis values is a point, so that a key is the point's number."""
-        return self.size == self.key_count
+        return self.size == self.key_count and bool(np.all(self.keys == np.arange(self.size)))
 
     @cached_property
     def _table(self) -> NDArray[np.int32] | None:
