@@ -26,6 +26,15 @@ from specflow.model.verdict import ActivityResult, GoverningPoint, RequirementSt
 
 FORMAT = 1
 
+_PARTS: Mapping[str, type] = {
+    "project_revision": int,
+    "as_of": str,
+    "documents": dict,
+    "evidence": dict,
+    "files": dict,
+    "statuses": dict,
+}
+
 
 @dataclass(frozen=True)
 class FrozenProject:
@@ -119,9 +128,12 @@ def _read(content: bytes) -> dict[str, Any]:
             f"a baseline of format {data['format']}; this program reads up to {FORMAT}",
             hint="update specflow",
         )
-    missing = {"project_revision", "as_of", "documents", "evidence", "files", "statuses"} - data.keys()
-    if missing:
-        raise DocumentError(f"the bytes of the baseline lack {', '.join(sorted(missing))}")
+    wrong = [name for name, kind in _PARTS.items() if not isinstance(data.get(name), kind)]
+    if wrong:
+        raise DocumentError(f"the bytes of the baseline lack {', '.join(wrong)}")
+    unknown = sorted(data["documents"].keys() - NOUN_BY_NAME.keys())
+    if unknown or not all(isinstance(group, list) for group in data["documents"].values()):
+        raise DocumentError(f"the documents of the baseline cannot be read {', '.join(unknown)}".rstrip())
     return data
 
 

@@ -220,7 +220,7 @@ def some_evidence(
 
 
 def a_snapshot(*documents: Document, columns: Mapping[str, EvidenceColumns] | None = None) -> Snapshot:
-    """Return a snapshot of the documents; a project is added when none is given. ``columns`` are the arrays by table."""
+    """Return a snapshot of the documents, with a project when none is given. ``columns`` are the arrays by table."""
     if not any(isinstance(document, Project) for document in documents):
         documents = (a_project(), *documents)
     by_noun: dict[str, dict[str, Document]] = {}

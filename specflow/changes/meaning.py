@@ -7,6 +7,7 @@ which waivers, approvals and activities refer to, then stays.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from datetime import date
@@ -109,6 +110,8 @@ def moved_by(old: float, old_unit: str, new: float, new_unit: str) -> str:
         old_there = old if source == target else converter(source, target)(old)
         step = format_quantity(abs(new - old_there), tolerance_unit(target))
     except UnitError:
+        return ""
+    if not math.isfinite(old_there):  # no power in dBm is 0 W
         return ""
     if new == old_there:
         return f"the same value in {new_unit}"
