@@ -183,7 +183,7 @@ def test_two_baselines_are_compared_by_meaning() -> None:
         (lambda content: b'{"format": 1}', "lack project_revision, as_of, documents"),
         (lambda content: content.replace(b'"format":1,"project', b'"format":99,"project'), "of format 99"),
         (lambda content: content.replace(b'"documents":{', b'"documents":{"unit":[],'), "cannot be read unit"),
-        (lambda content: content.replace(b'"project_revision":1,', b'"project_revision":"1",'), "lack project_revision"),
+        (lambda content: content.replace(b'"project_revision":1,', b'"project_revision":"1",'), "lack project_rev"),
         (lambda content: content.replace(b'"tier":"block"', b'"tier":"shelf"'), "tier"),
         (lambda content: b"\xff\xfe", "not the bytes of a baseline"),
     ],
