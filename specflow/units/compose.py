@@ -92,6 +92,8 @@ def referred(factors: list[Factor]) -> Unit:
     if special is not None:
         return logarithmic(special)
     head, *rest = factors
+    if names.log_row(f"dB{head.name}") is None:
+        raise UnitError(f"dB cannot be relative to '{head.name}'", hint="a remark is no part of the unit")
     return composed([replace(head, name=f"dB{head.name}"), *rest])
 
 

@@ -1,17 +1,18 @@
-"""Units that our own table does not have, read by pint: psi, torr, gauss, furlong.
+"""Units that our own table does not have, read by pint: psi, torr, knot, kilowatt.
 
 Pint is imported when a unit is met that the table lacks, never before, and its reading is taken only where it cannot be
-a misreading: pint understands almost any letters as prefix and unit ("pct" is a picocarat to it), so an abbreviation
-with a prefix is refused, and a dimensionless answer too.
+a misreading. Pint understands almost any letters as prefix and unit ("pct" is a picocarat to it) and many words of the
+trade as old units (link, chain, point), so it is asked for a list of units only, without abbreviated prefixes.
 """
 
 from __future__ import annotations
 
 from fractions import Fraction
-from functools import cache
+from functools import cache, lru_cache
 from typing import Any
 
 from specflow.units.names import Name
+from specflow.units.table import TRUSTED_TO_PINT
 
 _SHORTEST = 3
 _BASES = {
@@ -25,7 +26,7 @@ _BASES = {
 }
 
 
-@cache
+@lru_cache(maxsize=1024)
 def linear_name(text: str) -> Name | None:
     """The unit as pint reads it, or None when pint does not know it or would have to guess."""
     if len(text) < _SHORTEST or not text.isascii() or not text.isalpha():
@@ -34,26 +35,14 @@ def linear_name(text: str) -> Name | None:
     if len(readings) != 1:
         return None
     prefix, name = readings.pop()
-    if prefix and text.rstrip("s") != (prefix + name).rstrip("s"):
+    if name not in TRUSTED_TO_PINT or (prefix and not text.startswith(prefix)):
         return None
     return _converted(text, prefix + name)
 
 
-def _converted(text: str, name: str) -> Name | None:
-    import pint
-
-    try:
-        base = _registry().Quantity(1, name).to_base_units()
-        doubled = _registry().Quantity(2, name).to_base_units()
-    except pint.PintError:
-        return None
-    dimensions = dict(base.dimensionality)
-    is_multiple = abs(doubled.magnitude - 2 * base.magnitude) < 1e-9 * abs(base.magnitude)
-    if not dimensions or not is_multiple or not set(dimensions) <= set(_BASES):
-        return None
-    exponents = {_BASES[key]: Fraction(power) for key, power in dimensions.items()}
-    if any(exponent.denominator != 1 for exponent in exponents.values()):
-        return None  # a unit of the CGS systems, which has no place among SI quantities
+def _converted(text: str, name: str) -> Name:
+    base = _registry().Quantity(1, name).to_base_units()
+    exponents = {_BASES[key]: Fraction(power) for key, power in dict(base.dimensionality).items()}
     return Name(text, Fraction(str(base.magnitude)), Fraction(0), tuple(exponents.items()))
 
 

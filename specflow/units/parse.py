@@ -20,6 +20,7 @@ _MEASURE = re.compile(
 )
 _DEGREES = re.compile(r"(?:deg(?:ree)?s?\.? ?|° )([CFK])\b")
 _IN_BANDWIDTH = re.compile(r" in (?:an? )?(?=\d)")
+_DECIMAL_COMMA = re.compile(r"(?<=\d),(?=\d{1,2}(?!\d))")
 _BANDWIDTH_WORD = re.compile(r"(?<=Hz)\)? ?(?:BW|RBW|MBW|[Bb]andwidth)\)?$")
 _REFERRED = re.compile(r"^dB ?\((?P<reference>.+)\)$", re.IGNORECASE)
 
@@ -56,6 +57,7 @@ def _read(text: str) -> Unit:
         measure = _MEASURES[re.sub(r"[- ]", "", measured["measure"].lower())]
         return compose.measured(_read(measured["unit"]), measure)
     plain = _DEGREES.sub(r"°\1", text).replace("°K", "K")
+    plain = _DECIMAL_COMMA.sub(".", plain)
     plain = _BANDWIDTH_WORD.sub("", _IN_BANDWIDTH.sub("/", re.sub(r" ?\b[Pp]er ", "/", plain)))
     referred = _REFERRED.match(plain)
     if referred:

@@ -180,5 +180,18 @@ AMBIGUOUS = {
     "mw": "mW and MW differ by nine decades: write mW",
 }
 
+# fmt: off
+TRUSTED_TO_PINT = frozenset((
+    "hertz", "second", "meter", "gram", "kelvin", "ampere", "volt", "watt", "ohm", "farad", "henry",
+    "siemens", "joule", "newton", "pascal", "tesla", "weber", "candela", "lumen", "lux", "nit", "mole",
+    "pound_force_per_square_inch", "kip_per_square_inch", "torr", "standard_atmosphere", "inch_Hg",
+    "british_thermal_unit", "calorie", "horsepower", "knot", "mile_per_hour", "kilometer_per_hour",
+    "fathom", "furlong", "yard", "micron", "angstrom", "parsec", "ounce", "pound", "slug", "ton",
+    "metric_ton", "liter", "gallon", "hectare", "acre", "week", "month", "dyne", "poise", "force_pound",
+))
+# fmt: on
+"""Pint's names of units that we let it read. It knows hundreds more, and among them words that a sheet of radio data
+uses for something else: link, chain, point, pole, section, shot, gamma, sigma."""
+
 PLANE_WORDS = ("eirp", "e.i.r.p.", "erp", "e.r.p.", "trp", "eis", "tis", "conducted", "radiated")
 """Planes and conventions that people write behind a unit; they belong to the quantity, never to the unit."""

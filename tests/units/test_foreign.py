@@ -27,7 +27,7 @@ def test_pint_misreads_what_our_table_reads() -> None:
     assert parse_unit("dBi").kind is Kind.RATIO and parse_unit("dBi").gauge == "i"
 
 
-@pytest.mark.parametrize("text", ["pcarat", "dBq", "kgauss_cgs", "statvolt", "count", "turn", "dozen"])
+@pytest.mark.parametrize("text", ["pcarat", "dBq", "statvolt", "count", "turn", "mpsi"])
 def test_a_guess_of_pint_is_refused(text: str) -> None:
     with pytest.raises(UnitError):
         parse_unit(text)
@@ -38,6 +38,29 @@ def test_a_guess_of_pint_is_refused(text: str) -> None:
 )
 def test_a_written_out_name_is_read_by_pint(text: str, scale: float) -> None:  # a fathom is 6 feet
     assert parse_unit(text).scale == pytest.approx(scale, rel=1e-5)
+
+
+_WORDS = [
+    "link",
+    "chain",
+    "point",
+    "pole",
+    "section",
+    "shot",
+    "gamma",
+    "sigma",
+    "lambda",
+    "hand",
+    "are",
+    "gray",
+]
+
+
+@pytest.mark.parametrize("word", _WORDS)
+def test_a_word_of_the_trade_is_no_old_unit(word: str) -> None:
+    assert pint.UnitRegistry().parse_unit_name(word), "pint would have read it"
+    with pytest.raises(UnitError, match="not known"):
+        parse_unit(word)
 
 
 def test_ordinary_units_never_import_pint() -> None:

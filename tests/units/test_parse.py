@@ -35,6 +35,7 @@ SPELLINGS = [
     ("dBm/1000 kHz", "dBm/MHz", Kind.LEVEL_DENSITY),
     ("dBm/40 kHz", "dBm/40 kHz", Kind.LEVEL_DENSITY),
     ("dBm per 100 MHz", "dBm/100 MHz", Kind.LEVEL_DENSITY),
+    ("dBm / 3,84 MHz", "dBm/3.84 MHz", Kind.LEVEL_DENSITY),
     ("W/Hz", "W/Hz", Kind.LEVEL_DENSITY),
     ("dBc/Hz", "dBc/Hz", Kind.RATIO_DENSITY),
     ("dBµV/m", "dBµV/m", Kind.FIELD_LEVEL),
