@@ -29,6 +29,8 @@ def postgres() -> Iterator[Any]:
     with warnings.catch_warnings():
         warnings.simplefilter("ignore")
         server = server_package.get_server(folder, cleanup_mode="stop")
+    server.psql("ALTER SYSTEM SET fsync = off")  # what the tests write need not outlive the machine
+    server.psql("SELECT pg_reload_conf()")
     yield server
     server.cleanup()
     shutil.rmtree(folder, ignore_errors=True)
