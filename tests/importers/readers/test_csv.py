@@ -51,7 +51,8 @@ def test_whole_numbers_under_their_own_titles_are_not_ambiguous(tmp_path: Path) 
 
 
 def test_header_and_body_may_have_different_separators(tmp_path: Path) -> None:
-    text = "Frequency (GHz),    Hot Power (dB),  Cold Power (dB)\r\n0 \t -28.01 \t -28.9 \r\n0.04 \t -7.39 \t -7.39 \r\n"
+    header = "Frequency (GHz),    Hot Power (dB),  Cold Power (dB)\r\n"
+    text = header + "0 \t -28.01 \t -28.9 \r\n0.04 \t -7.39 \t -7.39 \r\n"
     grid = grid_of(tmp_path / "a.dat", text)
     assert grid.rows == [
         ["Frequency (GHz)", "Hot Power (dB)", "Cold Power (dB)"],
@@ -61,8 +62,15 @@ def test_header_and_body_may_have_different_separators(tmp_path: Path) -> None:
 
 
 def test_header_words_among_runs_of_blanks(tmp_path: Path) -> None:
-    grid = grid_of(tmp_path / "a.dat", "Antenna gain of run 3\nFreq (GHz)   Gain (dB)\n 1.0   20.5\n 2.0   21.5\n")
-    assert grid.rows == [["Antenna gain of run 3"], ["Freq (GHz)", "Gain (dB)"], ["1.0", "20.5"], ["2.0", "21.5"]]
+    grid = grid_of(
+        tmp_path / "a.dat", "Antenna gain of run 3\nFreq (GHz)   Gain (dB)\n 1.0   20.5\n 2.0   21.5\n"
+    )
+    assert grid.rows == [
+        ["Antenna gain of run 3"],
+        ["Freq (GHz)", "Gain (dB)"],
+        ["1.0", "20.5"],
+        ["2.0", "21.5"],
+    ]
 
 
 def test_mark_carriage_returns_and_missing_last_newline(tmp_path: Path) -> None:
@@ -145,7 +153,10 @@ def test_empty_fields_keep_their_columns(tmp_path: Path) -> None:
 
 
 def test_single_column_is_read(tmp_path: Path) -> None:
-    assert grid_of(tmp_path / "a.csv", "Gain (dB)\n1.5\n2.5\n").column_floats(1, 2, 4)[0].tolist() == [1.5, 2.5]
+    assert grid_of(tmp_path / "a.csv", "Gain (dB)\n1.5\n2.5\n").column_floats(1, 2, 4)[0].tolist() == [
+        1.5,
+        2.5,
+    ]
 
 
 def test_text_columns_are_not_parted_at_their_blanks(tmp_path: Path) -> None:

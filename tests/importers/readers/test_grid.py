@@ -63,7 +63,9 @@ def test_column_floats_lists_what_is_no_plain_number() -> None:
 
 
 def test_column_floats_lists_error_cells_and_formulas_without_value() -> None:
-    odd = OddCells([OddRun(1, 2, 2, OddCell(OddKind.ERROR, "#N/A")), OddRun(1, 4, 5, OddCell(OddKind.NO_VALUE))])
+    odd = OddCells(
+        [OddRun(1, 2, 2, OddCell(OddKind.ERROR, "#N/A")), OddRun(1, 4, 5, OddCell(OddKind.NO_VALUE))]
+    )
     grid = Grid("data", [[1.0], [""], [2.0], [""], [0.0]], odd=odd)
     numbers, bad = grid.column_floats(1, 1, 6)
     assert bad == [2, 4, 5]
@@ -71,7 +73,9 @@ def test_column_floats_lists_error_cells_and_formulas_without_value() -> None:
     assert grid.column_floats(1, 3, 4)[1] == []
 
 
-@pytest.mark.parametrize("text", ["1_000", "٣", "nan", "inf", "Infinity", "0x10", "1,5", "−3", "<-90", "1e", "."])
+@pytest.mark.parametrize(
+    "text", ["1_000", "٣", "nan", "inf", "Infinity", "0x10", "1,5", "−3", "<-90", "1e", "."]
+)
 def test_text_that_python_might_take_for_a_number_is_listed(text: str) -> None:
     grid = Grid("t.csv", [["1.5"], [text], [" -2e3 "]], is_text=True)
     numbers, bad = grid.column_floats(1, 1, 4)
@@ -120,7 +124,15 @@ def test_other_text_does_not_look_numeric(text: str) -> None:
 def test_odd_cells_are_found_by_row_and_column() -> None:
     percent, error = OddCell(OddKind.PERCENT), OddCell(OddKind.ERROR, "#N/A")
     odd = OddCells([OddRun(3, 10, 12, percent), OddRun(3, 2, 4, error), OddRun(1, 1, 1, error)])
-    assert [odd.at(row, 3) for row in (1, 2, 4, 5, 10, 12, 13)] == [None, error, error, None, percent, percent, None]
+    assert [odd.at(row, 3) for row in (1, 2, 4, 5, 10, 12, 13)] == [
+        None,
+        error,
+        error,
+        None,
+        percent,
+        percent,
+        None,
+    ]
     assert odd.at(2, 2) is None
     assert len(odd) == 7
     assert [run.first for run in odd.in_column(3, 4, 10)] == [2]

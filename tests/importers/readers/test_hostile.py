@@ -10,7 +10,7 @@ from pathlib import Path
 import pytest
 
 from specflow.importers.readers import archive as archive_module
-from specflow.importers.readers import open_grids
+from specflow.importers.readers import open_grids, xlsx
 from specflow.importers.readers.archive import Archive
 from specflow.importers.readers.source import read_source
 from tests.importers.readers.workbooks import MAIN, PARTS, by_hand, refused
@@ -118,7 +118,9 @@ def test_number_of_parts_is_limited(tmp_path: Path) -> None:
 
 @pytest.mark.parametrize("name", ["../../etc/passwd", "xl/../../a", "/etc/passwd", "C:/a", "..\\..\\a"])
 def test_part_names_that_point_outside_are_refused(tmp_path: Path, name: str) -> None:
-    assert "points outside the archive" in message_for(by_hand(tmp_path / "a.xlsx", ONE_CELL, parts={name: "x"}))
+    assert "points outside the archive" in message_for(
+        by_hand(tmp_path / "a.xlsx", ONE_CELL, parts={name: "x"})
+    )
 
 
 @pytest.mark.filterwarnings("ignore:Duplicate name")
@@ -209,3 +211,14 @@ def test_a_part_is_streamed_to_its_declared_size(tmp_path: Path) -> None:
         for name in reference.namelist():
             assert b"".join(archive.stream(name)) == reference.read(name)
     assert SHEET in archive.names()
+
+
+def test_a_panic_of_the_bulk_reader_is_one_message(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    class PanicException(BaseException):
+        """What the Rust library raises, by name; none of the broken files tried so far makes it do so."""
+
+    def panic(*_: object) -> None:
+        raise PanicException("index out of bounds")
+
+    monkeypatch.setattr(xlsx, "_grid", panic)
+    assert "damaged: sheet 'data': index out of bounds" in message_for(by_hand(tmp_path / "a.xlsx", ONE_CELL))

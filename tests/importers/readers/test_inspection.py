@@ -25,7 +25,7 @@ def test_formulas_are_those_that_openpyxl_sees() -> None:
         assert found.keys() == stored.keys()
         own = {cell: text for cell, text in found.items() if "(as in " not in text}
         assert own == {cell: stored[cell] for cell in own}
-        assert len(own) >= len(found) // 2
+        assert len(own) > 10
 
 
 def test_filled_formula_names_the_cell_it_is_written_for(tmp_path: Path) -> None:

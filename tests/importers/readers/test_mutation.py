@@ -18,12 +18,15 @@ from tests.importers.readers.workbooks import PARTS, by_hand
 SHEET = "xl/worksheets/sheet1.xml"
 ROWS = (
     '<row r="2"><c r="B2" t="s"><v>0</v></c><c r="C2" s="1"><v>0.5</v></c><c r="D2"><f>B2*2</f><v>3</v></c></row>'
-    '<row r="3" hidden="1"><c r="B3" t="s"><v>1</v></c><c r="C3" t="e"><v>#N/A</v></c><c r="D3" s="3"><v>45000</v></c></row>'
+    '<row r="3" hidden="1"><c r="B3" t="s"><v>1</v></c><c r="C3" t="e"><v>#N/A</v></c>'
+    '<c r="D3" s="3"><v>45000</v></c></row>'
 )
 TABLE = b'# run 3\n"Freq, GHz";Gain (dB);note\n1,5;20,25;"a;b"\n2,5;-3e1;\n\n3,5;<-90;\xc2\xb5\n'
 
 edits = st.lists(
-    st.tuples(st.floats(0, 1, exclude_max=True), st.sampled_from("set insert delete".split()), st.binary(max_size=6)),
+    st.tuples(
+        st.floats(0, 1, exclude_max=True), st.sampled_from(["set", "insert", "delete"]), st.binary(max_size=6)
+    ),
     min_size=1,
     max_size=6,
 )

@@ -54,7 +54,9 @@ def test_numbers_shown_in_thousands_are_reported(code: str, unit: str) -> None:
     assert odd_format(200, code) == OddCell(OddKind.SCALED, code, unit)
 
 
-@pytest.mark.parametrize("code", ["yyyy-mm-dd", "d-mmm", "[h]:mm", "mm:ss.0", "h:mm AM/PM", "[$-409]d mmm yyyy"])
+@pytest.mark.parametrize(
+    "code", ["yyyy-mm-dd", "d-mmm", "[h]:mm", "mm:ss.0", "h:mm AM/PM", "[$-409]d mmm yyyy"]
+)
 def test_date_formats_are_reported(code: str) -> None:
     odd = odd_format(200, code)
     assert odd is not None

@@ -134,15 +134,17 @@ def test_text_that_looks_like_cells_is_no_cell() -> None:
 
 
 def test_error_text_is_decoded() -> None:
-    scan = scanned('<row r="1"><c r="A1" t="e"><v>#DIV/0!</v></c><c r="B1" t="e"><f>x</f><v>#REF!</v></c></row>')
+    scan = scanned(
+        '<row r="1"><c r="A1" t="e"><v>#DIV/0!</v></c><c r="B1" t="e"><f>x</f><v>#REF!</v></c></row>'
+    )
     assert [run.cell.detail for run in scan.odd] == ["#DIV/0!", "#REF!"]
 
 
 def test_extent_leaves_out_cells_that_only_have_a_style() -> None:
     assert scanned('<row r="9"><c r="A9" s="1"/><c r="XFD9" s="1"></c></row>').extent is None
-    assert str(scanned('<row r="2"><c r="C2"><v>1</v></c></row><row r="9"><c r="B9"><v>1</v></c></row>').extent) == (
-        "B2:C9"
-    )
+    assert str(
+        scanned('<row r="2"><c r="C2"><v>1</v></c></row><row r="9"><c r="B9"><v>1</v></c></row>').extent
+    ) == ("B2:C9")
 
 
 @pytest.mark.parametrize(

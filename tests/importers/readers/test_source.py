@@ -61,7 +61,9 @@ def test_file_that_changed_since_the_preview_is_refused(tmp_path: Path) -> None:
     assert "has changed since it was looked at" in refused(lambda: open_grids(path, expected=seen))
 
 
-def test_file_that_is_written_while_it_is_read_is_refused(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+def test_file_that_is_written_while_it_is_read_is_refused(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
     path = tmp_path / "gain.csv"
     path.write_text("f,g\n1,2\n")
     read_bytes = Path.read_bytes

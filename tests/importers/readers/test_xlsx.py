@@ -87,7 +87,9 @@ def test_formula_without_a_stored_value_is_odd_and_its_column_exists(tmp_path: P
 
 
 def test_sheet_of_nothing_but_uncalculated_formulas_is_not_taken_for_empty(tmp_path: Path) -> None:
-    grid = read_one(by_hand(tmp_path / "a.xlsx", '<row r="3"><c r="B3"><f>1+1</f></c><c r="C3"><f/></c></row>'))
+    grid = read_one(
+        by_hand(tmp_path / "a.xlsx", '<row r="3"><c r="B3"><f>1+1</f></c><c r="C3"><f/></c></row>')
+    )
     assert (grid.first_row, grid.first_column, grid.last_row, grid.last_column) == (3, 2, 3, 3)
     assert grid.column_floats(3, 3, 4)[1] == [3]
 
@@ -167,16 +169,22 @@ def test_all_sheets_are_read_in_their_order_and_charts_are_passed_over(tmp_path:
 
 
 def test_strict_and_absolute_relations_are_followed(tmp_path: Path) -> None:
-    relations = PARTS["xl/_rels/workbook.xml.rels"].replace("worksheets/sheet1.xml", "/xl/worksheets/sheet1.xml")
+    relations = PARTS["xl/_rels/workbook.xml.rels"].replace(
+        "worksheets/sheet1.xml", "/xl/worksheets/sheet1.xml"
+    )
     path = by_hand(
-        tmp_path / "a.xlsx", '<row r="1"><c r="A1"><v>5</v></c></row>', parts={"xl/_rels/workbook.xml.rels": relations}
+        tmp_path / "a.xlsx",
+        '<row r="1"><c r="A1"><v>5</v></c></row>',
+        parts={"xl/_rels/workbook.xml.rels": relations},
     )
     assert read_one(path).value(1, 1) == 5.0
 
 
 def test_macros_are_noted_and_the_data_are_read(tmp_path: Path) -> None:
     path = by_hand(
-        tmp_path / "a.xlsm", '<row r="1"><c r="A1"><v>5</v></c></row>', parts={"xl/vbaProject.bin": b"\xd0\xcf\x11"}
+        tmp_path / "a.xlsm",
+        '<row r="1"><c r="A1"><v>5</v></c></row>',
+        parts={"xl/vbaProject.bin": b"\xd0\xcf\x11"},
     )
     grid = read_one(path)
     assert grid.value(1, 1) == 5.0
@@ -211,7 +219,7 @@ def test_workbook_without_any_filled_cell_is_refused(tmp_path: Path) -> None:
 
 
 def test_workbook_of_charts_alone_is_refused(tmp_path: Path) -> None:
-    book = PARTS["xl/_rels/workbook.xml.rels"].replace("/worksheet\"", "/chartsheet\"")
+    book = PARTS["xl/_rels/workbook.xml.rels"].replace('/worksheet"', '/chartsheet"')
     path = by_hand(tmp_path / "a.xlsx", "", parts={"xl/_rels/workbook.xml.rels": book})
     assert "has no worksheet" in refused(lambda: open_grids(path))
 
@@ -225,7 +233,9 @@ def test_unknown_error_code_is_refused_with_its_cell(tmp_path: Path) -> None:
 
 def test_numbers_are_exactly_those_in_the_file(tmp_path: Path) -> None:
     texts = ["0.1", "1e-300", "17.700000000000003", "123456789012345680", "-2.2250738585072014E-308", "5"]
-    rows = "".join(f'<row r="{row}"><c r="A{row}"><v>{text}</v></c></row>' for row, text in enumerate(texts, 1))
+    rows = "".join(
+        f'<row r="{row}"><c r="A{row}"><v>{text}</v></c></row>' for row, text in enumerate(texts, 1)
+    )
     numbers, bad = read_one(by_hand(tmp_path / "a.xlsx", rows)).column_floats(1, 1, len(texts) + 1)
     assert numbers.tolist() == [float(text) for text in texts]
     assert bad == []
@@ -242,6 +252,8 @@ def test_the_sheet_state_comes_from_the_workbook(tmp_path: Path) -> None:
         f'<workbook xmlns="{MAIN}" xmlns:r="{RELATIONS}"><sheets>'
         '<sheet name="data" sheetId="1" state="hidden" r:id="rId1"/></sheets></workbook>'
     )
-    path = by_hand(tmp_path / "a.xlsx", '<row r="1"><c r="A1"><v>5</v></c></row>', parts={"xl/workbook.xml": book})
+    path = by_hand(
+        tmp_path / "a.xlsx", '<row r="1"><c r="A1"><v>5</v></c></row>', parts={"xl/workbook.xml": book}
+    )
     assert zipfile.is_zipfile(path)
     assert read_one(path).hidden

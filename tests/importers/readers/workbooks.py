@@ -26,15 +26,19 @@ PARTS = {
     "xl/sharedStrings.xml": f'<sst xmlns="{MAIN}"><si><t>Gain (dB)</t></si><si><t>3.1</t></si></sst>',
     "xl/styles.xml": f'<styleSheet xmlns="{MAIN}"><numFmts><numFmt numFmtId="170" formatCode="0.0&quot; dBm&quot;"/>'
     '</numFmts><cellXfs><xf numFmtId="0"/><xf numFmtId="10"/><xf numFmtId="170"/><xf numFmtId="14"/>'
-    "<xf numFmtId=\"2\"/></cellXfs></styleSheet>",
+    '<xf numFmtId="2"/></cellXfs></styleSheet>',
 }
 """Styles: 0 plain, 1 percent, 2 dBm, 3 date, 4 two decimals. Shared texts: 0 ``Gain (dB)``, 1 ``3.1``."""
 
 
-def by_hand(path: Path, rows: str, *, around: str = "{rows}", parts: Mapping[str, str | bytes | None] = {}) -> Path:
+def by_hand(
+    path: Path, rows: str, *, around: str = "{rows}", parts: Mapping[str, str | bytes | None] = {}
+) -> Path:
     """A workbook with one sheet ``data`` whose ``<sheetData>`` holds ``rows``; ``parts`` replaces (None: leaves out)
     parts of the archive."""
-    sheet = f'<worksheet xmlns="{MAIN}">' + around.format(rows=f"<sheetData>{rows}</sheetData>") + "</worksheet>"
+    sheet = (
+        f'<worksheet xmlns="{MAIN}">' + around.format(rows=f"<sheetData>{rows}</sheetData>") + "</worksheet>"
+    )
     everything: dict[str, str | bytes | None] = {**PARTS, "xl/worksheets/sheet1.xml": sheet, **parts}
     with zipfile.ZipFile(path, "w", zipfile.ZIP_DEFLATED) as archive:
         for name, content in everything.items():
