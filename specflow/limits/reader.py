@@ -59,7 +59,7 @@ _NAME = re.compile(r"[^\W\d]\w*(?:\.[^\W\d]\w*)*")
 _LETTERS = r"[A-Za-zµμΩΩ°%‰]+"
 _UNIT_HEAD = re.compile(_LETTERS + r"[²³]?")
 _UNIT_TAIL = re.compile(
-    rf"(?:\s*/\s*|\s+per\s+)(?:\d+(?:\.\d+)?\s*)?(?:{_LETTERS}\d?[²³]?|\([^()]{{1,20}}\))|\s+(?:rms|RMS)"
+    rf"(?:\s*/\s*|\s+per\s+)(?:\d+(?:\.\d+)?\s*)?(?:{_LETTERS}\d?[²³]?|\([^()]{{1,20}}\))|\s+(?:rms|RMS|p-p|pk-pk|peak)(?!\w)"
 )
 _CALL = re.compile(rf"(?:{'|'.join(FUNCTION_NAMES)}) *\(")
 
