@@ -20,7 +20,6 @@ from specflow.units import bridge
 from specflow.units.bridge import Bridge
 from specflow.units.density import level_of
 from specflow.units.kinds import Spectrum
-from specflow.units.refusal import no_conversion
 from specflow.units.unit import Unit
 
 Array = NDArray[np.float64]
@@ -185,8 +184,6 @@ def _across(source: Unit, target: Unit, link: Bridge, log_factor: int | None) ->
             "whether 10·log (a power ratio) or 20·log (an amplitude ratio) is meant comes from the parameter"
         )
         raise UnitError(f"{source} cannot be converted to {target}", hint=hint)
-    if link.shift_db:
-        raise no_conversion(source, target)
     if target.is_log:
         return _logarithm(source, target, link, factor)
     return _antilogarithm(source, target, link, factor)

@@ -56,7 +56,7 @@ _BOUND = re.compile(r"^(?P<sign><=|>=|=<|=>|≤|≥|⩽|⩾|<|>)\s*(?P<number>.+
 _RANGE = re.compile(r"^(?P<lo>.*\d)\s*(?:\.\.+|…| to )\s*(?P<hi>[-+]?[\d.,].*)$")
 # The shortest beginning that ends in a digit and is followed by what a unit starts with; neither the "e" of an exponent
 # nor the "to" of a range is one.
-_WITH_UNIT = re.compile(r"^(?P<number>.*?\d\.?) ?(?P<unit>(?![eE][+-]?\d|to )(?:[^\W\d]|[%‰°√\[]).*)$")
+_WITH_UNIT = re.compile(r"^(?P<number>.*?\d\.?) ?(?P<unit>(?![eE][+-]?\d|to )(?:[^\W\d]|[%‰°√\[:]).*)$")
 _SCPI_NOT_A_NUMBER = 9.9e37  # SCPI-1999 volume 1, 7.2.1: 9.9E37 is infinity, 9.91E37 is not-a-number
 _UNSURE = (
     ("±", "its uncertainty belongs in a column of its own"),

@@ -31,7 +31,7 @@ def no_conversion(source: Unit, target: Unit) -> UnitError:
 
 def missing(source: Unit, target: Unit) -> str:
     """What would be needed to get from one unit to the other, or why nothing can help."""
-    if source.kind is Kind.RATIO and target.kind is Kind.RATIO:
+    if {source.kind, target.kind} <= {Kind.RATIO, Kind.RATIO_DENSITY}:
         return _between_ratios(source, target)
     for left, right in ((source, target), (target, source)):
         found = _between_kinds(left, right) or _between_dimensions(left, right)
@@ -58,8 +58,8 @@ def _between_kinds(left: Unit, right: Unit) -> str:
     """The missing piece when ``left`` and ``right`` stand in this order, or nothing."""
     if left.kind is Kind.RATIO and right.kind in _LEVELS | _FIELDS:
         return _from_ratio_to_level(left)
-    if left.kind is Kind.RATIO_DENSITY:
-        return _from_ratio_density(left, right)
+    if left.kind is Kind.RATIO_DENSITY and right.kind in _LEVELS:
+        return "the carrier level is missing"
     if left.kind in _LEVELS and right.kind in _FIELDS:
         return "the distance and the antenna gain, or the antenna factor, are missing"
     if left.kind is Kind.MERIT and right.kind is Kind.RATIO:
@@ -82,14 +82,6 @@ def _from_ratio_to_level(ratio: Unit) -> str:
         "ic": "the power at the antenna input is missing",
         "d": "the power at the antenna input is missing",
     }.get(ratio.gauge, "the reference level is missing")
-
-
-def _from_ratio_density(density: Unit, other: Unit) -> str:
-    if other.kind in _LEVELS:
-        return "the carrier level is missing"
-    if other.kind is Kind.RATIO and other.gauge == density.gauge:
-        return "the bandwidth is missing"
-    return "the bandwidth and the reference are missing" if other.kind is Kind.RATIO else ""
 
 
 _DIMENSIONS = {

@@ -181,6 +181,7 @@ def test_an_unknown_spectrum_gives_the_line_and_the_noise_as_bounds() -> None:
         ("dBm", "dBµV/m", "the distance and the antenna gain"),
         ("dBm", "dBW/m²", "the distance and the antenna gain"),
         ("dBm/MHz", "dBW/m²/MHz", "the distance and the antenna gain"),
+        ("dBc/Hz", "dBr/Hz", "the reference is missing"),
         ("dB/K", "dBi", "noise temperature is missing"),
         ("dB/K", "dB/°C", "not a slope over temperature"),
         ("dB/m", "dB", "the length is missing"),

@@ -95,6 +95,8 @@ def test_a_doubtful_cell_is_refused(text: str, says: str) -> None:
         ("1 000 MHz", 1000.0, 1000.0, "MHz"),
         ("-13 dBm/40 kHz", -13.0, -13.0, "dBm/40 kHz"),
         ("1e-3 W", 1e-3, 1e-3, "W"),
+        ("1.5:1", 1.5, 1.5, "1"),
+        ("< 1.5 : 1", -math.inf, 1.5, "1"),
         ("1.5 to 2.5 dB", 1.5, 2.5, "dB"),
         ("-90 … -80 dBm", -90.0, -80.0, "dBm"),
     ],
