@@ -3,8 +3,6 @@
 from __future__ import annotations
 
 import shutil
-from collections.abc import Iterator
-from datetime import UTC, datetime
 from pathlib import Path
 
 import pytest
@@ -13,10 +11,13 @@ from alembic.runtime.migration import MigrationContext
 from sqlalchemy import Connection, inspect
 
 from specflow.errors import StoreError
+from specflow.model.change import Change
+from specflow.model.snapshot import Snapshot
 from specflow.store import create_project, open_project, schema
 from specflow.store.place import place_of
 from specflow.store.rows import metadata
 from tests.builders import a_block, a_project, adding, an_evidence_file, an_evidence_table, some_evidence
+from tests.conftest import noon
 
 NEWEST = schema.newest_version()
 
@@ -44,7 +45,7 @@ def downgrade() -> None:
 
 
 @pytest.fixture
-def next_schema(tmp_path_factory: pytest.TempPathFactory, monkeypatch: pytest.MonkeyPatch) -> Iterator[Path]:
+def next_schema(tmp_path_factory: pytest.TempPathFactory, monkeypatch: pytest.MonkeyPatch) -> Path:
     """Let the program know one schema more than it does."""
     folder = tmp_path_factory.mktemp("program") / "migrations"
     shutil.copytree(schema.migrations_folder(), folder, ignore=shutil.ignore_patterns("__pycache__"))
@@ -59,7 +60,7 @@ def later(more: str = "") -> str:
     return NEXT.format(more=more, newest=f"{NEWEST:04}", later=f"{NEWEST + 1:04}")
 
 
-def changes() -> list:  # type: ignore[type-arg]
+def changes() -> list[Change]:
     """Return the changes that fill a project."""
     return adding(a_block(), an_evidence_file(), an_evidence_table())
 
@@ -115,10 +116,9 @@ def test_an_older_project_is_copied_and_upgraded_when_opened(
 
     with pytest.raises(StoreError, match="older schema"):
         open_project(where, read_only=True)
-    clock = lambda: datetime(2026, 5, 4, 12, 30, tzinfo=UTC)  # noqa: E731
-    with open_project(where, clock=clock, backup_folder=tmp_path) as store:
+    with open_project(where, clock=noon, backup_folder=tmp_path) as store:
         (note,) = store.notes
-        copies = list(tmp_path.glob(f"*-schema{NEWEST}-20260504T123000.specflow"))
+        copies = list(tmp_path.glob(f"*-schema{NEWEST}-20260504T120000.specflow"))
         assert [str(copy) in note for copy in copies] == [True]
         assert f"upgraded from schema {NEWEST} to {NEWEST + 1}" in note
         assert_is_filled(store.load())
@@ -135,7 +135,7 @@ def test_an_older_project_is_copied_and_upgraded_when_opened(
         open_project(where)
 
 
-def assert_is_filled(snapshot) -> None:  # type: ignore[no-untyped-def]
+def assert_is_filled(snapshot: Snapshot) -> None:
     """Check that what ``changes`` made is there, arrays too."""
     assert snapshot.revision == 2
     assert [block.id for block in snapshot.blocks] == ["LNA"]

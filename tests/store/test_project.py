@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import hashlib
+from datetime import date
 from pathlib import Path
 
 import numpy as np
@@ -65,7 +66,7 @@ def test_a_new_project_holds_its_project_document(where: str) -> None:
 
 def test_documents_of_all_kinds_come_back_whatever_their_order(store: ProjectStore) -> None:
     documents = (
-        ItemChange(id="C-1", block="LNA", item="LNA-1", effective="2026-05-01", description="new bias"),
+        ItemChange(id="C-1", block="LNA", item="LNA-1", effective=date(2026, 5, 1), description="new bias"),
         Waiver(id="W-1", requirement="R-1", permitted=">= 19 dB", reason="late"),
         Budget(
             id="B-1",
@@ -84,7 +85,7 @@ def test_documents_of_all_kinds_come_back_whatever_their_order(store: ProjectSto
     assert store.apply(adding(*documents), by=ME) == 2
     snapshot = store.load()
     for document in documents:
-        assert snapshot.find(type(document), document.id) == document  # type: ignore[attr-defined]
+        assert snapshot.find(type(document), document.id) == document
     assert snapshot.revision == store.revision == 2
 
 
