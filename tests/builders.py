@@ -17,6 +17,7 @@ from specflow.model.columns import Columns, TextColumn
 from specflow.model.conditions import ConditionsSet, Dimension
 from specflow.model.decision import Waiver
 from specflow.model.declared import DeclaredValue
+from specflow.model.draft import Draft
 from specflow.model.evidence import (
     ConditionColumn,
     EvidenceColumns,
@@ -329,3 +330,14 @@ def project_workbook(path: Path, **sheets: Sequence[Mapping[str, Any]]) -> Path:
             sheet.append([row.get(header) for header in headers])
     book.save(path)
     return path
+
+
+def read_sheets(
+    folder: Path, snapshot: Snapshot | None = None, **sheets: Sequence[Mapping[str, Any]]
+) -> Draft:
+    """Write the sheets as a workbook in ``folder`` and read it into a draft. See ``project_workbook``."""
+    from specflow.importers.workbook import read_workbook
+    from specflow.parameters import load_dictionary
+
+    path = project_workbook(folder / "project.xlsx", **sheets)
+    return read_workbook(path, snapshot or a_snapshot(), load_dictionary())

@@ -6,7 +6,6 @@ into 0.1.
 
 from __future__ import annotations
 
-import os
 from collections.abc import Sequence
 from datetime import datetime
 from io import BytesIO
@@ -25,8 +24,8 @@ _ROWS_TO_FILL = 2000
 _CREATED = datetime(2026, 1, 1)  # a fixed date: the same layouts give the same bytes
 
 _LEADING = (
-    "One sheet for each kind of thing. Fill in only the sheets that you need; several workbooks may be loaded one after "
-    "another, and a workbook may be loaded again after edits: what changed is shown before anything is stored.",
+    "One sheet for each kind of thing. Fill in only the sheets that you need; several workbooks may be loaded one "
+    "after another, and a workbook may be loaded again after edits: what changed is shown before anything is stored.",
     "Sheets and columns are found by their names, in any order. Rows above the headers are not read, and columns that "
     "are not known are reported and left out. Columns you do not need may be deleted.",
     "Rows marked 'example' in the first column are not loaded. Empty the mark to load them, or delete the rows.",
@@ -50,7 +49,7 @@ def write_template(layouts: Sequence[SheetLayout], path: str | Path) -> None:
     part = path.with_name(path.name + ".part")
     try:
         part.write_bytes(content)
-        os.replace(part, path)
+        part.replace(path)
     except OSError as error:
         part.unlink(missing_ok=True)
         reason = error.strerror or str(error)
@@ -76,16 +75,13 @@ def template_bytes(layouts: Sequence[SheetLayout]) -> bytes:
 
 def _formats(book: Workbook) -> dict[str, Any]:
     top = {"valign": "top", "text_wrap": True}
+    head = {**top, "bold": True, "bottom": 1}
     return {
         "title": book.add_format({"bold": True, "font_size": 14}),
         "text": book.add_format({**top}),
         "guidance": book.add_format({**top, "italic": True, "font_size": 9, "font_color": "#555555"}),
-        "header": book.add_format(
-            {"bold": True, "bottom": 1, "bg_color": "#E8EDF2", "valign": "top", "text_wrap": True}
-        ),
-        "needed": book.add_format(
-            {"bold": True, "bottom": 1, "bg_color": "#C9D8E6", "valign": "top", "text_wrap": True}
-        ),
+        "header": book.add_format({**head, "bg_color": "#E8EDF2"}),
+        "needed": book.add_format({**head, "bg_color": "#C9D8E6"}),
         "cell": book.add_format({**top, "num_format": "@"}),
         "example": book.add_format({**top, "num_format": "@", "italic": True, "font_color": "#777777"}),
         "name": book.add_format({"bold": True, "valign": "top"}),

@@ -1,8 +1,9 @@
 """The sheets of the project workbook: one module a noun, each with its layout and its way from rows to documents.
 
 What may live here: ``sheet.py`` (what a sheet kind is), ``table.py`` (the header row and the rows below it), ``row.py``
-and ``cells.py`` (a cell, typed or refused), ``intake.py`` (what was read so far, references, duplicates), ``cycles.py``
-and ``leftovers.py`` (checks across rows), and one module a noun. A new sheet is one module and one line in ``SHEETS``.
+and ``cells.py`` (a cell, typed or refused), ``intake.py`` (what was read so far, references, duplicates),
+``spelling.py`` (the nearest known words), ``cycles.py`` and ``leftovers.py`` (checks across rows), ``plans.py`` (the
+activities of a requirement), and one module a noun. A new sheet is one module and one line in ``SHEETS``.
 """
 
 from specflow.importers.sheets import (

@@ -14,6 +14,8 @@ _BLANKS = str.maketrans(
     {"\u00a0": " ", "\u202f": " ", "\u2007": " ", "\u200b": None, "\ufeff": None, "\u2060": None, "\0": None}
 )
 
+_DASHES = frozenset("-–—−")
+
 
 class CellFault(Exception):
     """A cell that cannot be taken: what is wrong, and what to do."""
@@ -34,6 +36,9 @@ def clean(text: str) -> str:
 def cell_text(grid: Grid, row: int, column: int, *, dates: bool = False) -> str:
     """Return what a cell says, as text: "12" for the number 12, "10 %" for 0.1 shown as a percentage.
 
+    A lone dash is an empty cell. Numbers have the 15 digits that spreadsheet programs show: 0.3, not the
+    0.30000000000000004 that a formula may leave.
+
     A date is text only with ``dates`` (ISO form); elsewhere it is what a spreadsheet made of an id or a number.
     Raises CellFault.
     """
@@ -42,7 +47,8 @@ def cell_text(grid: Grid, row: int, column: int, *, dates: bool = False) -> str:
     if odd is not None:
         _refuse_unreadable(odd)
     if isinstance(value, str):
-        return clean(value)
+        text = clean(value)
+        return "" if text in _DASHES else text
     if isinstance(value, datetime | date | time | timedelta):
         return _date_text(value, dates)
     if isinstance(value, bool):
@@ -128,7 +134,7 @@ def _date_text(value: datetime | date | time | timedelta, dates: bool) -> str:
 def _number_text(value: float, odd: OddCell | None) -> str:
     if odd is not None and odd.kind is OddKind.PERCENT:
         return f"{value * 100:.12g} %"
-    text = str(int(value)) if value.is_integer() and abs(value) < 1e15 else repr(value)
+    text = str(int(value)) if value.is_integer() and abs(value) < 1e15 else f"{value:.15g}"
     if odd is not None and odd.kind is OddKind.UNIT_FORMAT and odd.unit:
         return f"{text} {odd.unit}"
     return text

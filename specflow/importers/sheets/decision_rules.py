@@ -3,9 +3,11 @@
 from __future__ import annotations
 
 import re
+from typing import get_args
 
-from specflow.importers.sheets.intake import Intake, near
+from specflow.importers.sheets.intake import Intake
 from specflow.importers.sheets.row import SheetRow
+from specflow.importers.sheets.spelling import near
 from specflow.model.base import code_key
 from specflow.model.block import Item
 from specflow.model.expression import Number
@@ -26,6 +28,7 @@ _PROVERS = re.compile(
 _STIMULUS = re.compile(r"\s*(?:on|to|of)?\s*(?:the\s+)?stimulus$", re.IGNORECASE)
 TIGHTENS = "tightens the limit"
 REFUSED = "not admissible"
+COMPARISONS: tuple[str, ...] = get_args(DecisionRule.model_fields["comparison"].annotation)
 
 
 def decision_rule(row: SheetRow, limit: Limit | None, parameter: Parameter | None) -> DecisionRule:
@@ -39,11 +42,14 @@ def decision_rule(row: SheetRow, limit: Limit | None, parameter: Parameter | Non
     name = RuleName.SIMPLE if parts is None else _rule_name(parts["name"])
     factor = float(parts["factor"] or 1.0) if parts else 1.0
     excess = row.one_of("excess_uncertainty", (REFUSED, TIGHTENS), REFUSED)
+    rounded = row.one_of("comparison", COMPARISONS, "absolute") == "rounded"
     return DecisionRule(
         name=name,
         guard_factor=factor,
         greatest_uncertainty=_greatest_uncertainty(row, limit, parameter),
         excess_tightens=excess == TIGHTENS,
+        comparison="rounded" if rounded else "absolute",
+        conditional_pass_counts=row.yes("conditional_pass_counts", True),
     )
 
 

@@ -6,12 +6,12 @@ registered before any row is read, so that sheets and rows may stand in any orde
 
 from __future__ import annotations
 
-import difflib
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, field
 from typing import TypeVar, cast
 
 from specflow.importers.sheets.row import SheetRow
+from specflow.importers.sheets.spelling import near
 from specflow.model.base import Document, code_key
 from specflow.model.finding import Finding, Severity
 from specflow.model.nouns import NOUN_BY_DOCUMENT
@@ -147,10 +147,3 @@ class Intake:
         noun = NOUN_BY_DOCUMENT[kind]
         stored = [str(getattr(one, noun.id_field)) for one in self.snapshot.all(kind)]
         return [*stored, *(code for code, *_ in self.codes.get(noun.name, {}).values())]
-
-
-def near(word: str, known: Iterable[str]) -> str:
-    """Return "; the nearest are A, B" for the spellings nearest to a word, "" when nothing is near."""
-    spellings = {code_key(one): one for one in known}
-    found = difflib.get_close_matches(code_key(word), spellings, n=3, cutoff=0.6)
-    return "; nearest: " + ", ".join(spellings[one] for one in found) if found else ""

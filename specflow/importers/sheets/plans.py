@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 from specflow.importers.sheets.intake import Intake
 from specflow.importers.sheets.row import SheetRow
 from specflow.model.base import code_key
@@ -9,8 +11,11 @@ from specflow.model.block import HardwareType
 from specflow.model.requirement import Activity, Method, Requirement, Stage
 
 
-def plan_in_row(row: SheetRow, requirement: Requirement, intake: Intake) -> None:
-    """Note the activities that the columns Method, Stage and Hardware of a requirement plan: one a method."""
+def plan_in_row(row: SheetRow, requirement: Requirement, intake: Intake) -> bool:
+    """Note the activities that the columns Method, Stage and Hardware of a requirement plan: one a method.
+
+    Returns whether these columns could be read.
+    """
     methods = [found for word in row.words("method") if (found := row.choose("method", word, Method))]
     stage = row.choice("stage", Stage, Stage.QUALIFICATION)
     hardware = row.choice("hardware", HardwareType, HardwareType.ENGINEERING)
@@ -26,6 +31,7 @@ def plan_in_row(row: SheetRow, requirement: Requirement, intake: Intake) -> None
         )
         for number, method in enumerate(methods, start=1)
     ]
+    return row.sound
 
 
 def complete_plans(intake: Intake) -> None:
@@ -34,12 +40,15 @@ def complete_plans(intake: Intake) -> None:
     Rows of the sheet Activities stand; without any, the shorthand of the requirement's own row; without that, what
     the project has already, and for a new requirement one activity that is not planned yet.
     """
-    planned = {code_key(activity.requirement) for activity in intake.given(Activity)}
+    planned: dict[str, set[Method]] = {}
+    for activity in intake.given(Activity):
+        planned.setdefault(code_key(activity.requirement), set()).add(activity.method)
     for requirement in intake.given(Requirement):
         key = code_key(requirement.id)
-        if key in planned:
-            continue
         activities = intake.shorthand.get(key, [])
+        if key in planned:
+            _compare(requirement, activities, planned[key], intake)
+            continue
         if not activities and key not in intake.snapshot.activities_of:
             activities = [
                 Activity(
@@ -52,3 +61,19 @@ def complete_plans(intake: Intake) -> None:
             ]
         for activity in activities:
             intake.add(activity, ("requirement", "method", "stage", "tier", "credit_from", "planned"))
+
+
+def _compare(
+    requirement: Requirement, shorthand: Sequence[Activity], planned: set[Method], intake: Intake
+) -> None:
+    """Say where the requirement's own row plans a method that its activities do not have."""
+    lacking = [activity.method.value for activity in shorthand if activity.method not in planned]
+    if lacking:
+        _, row, _ = intake.codes["requirement"][code_key(requirement.id)]
+        intake.note(
+            row,
+            "method",
+            f"the method {', '.join(lacking)} is in no row of the sheet Activities for {requirement.id}; they count",
+            "add the activity there, or empty this cell",
+            rule="workbook-plans-differ",
+        )

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from specflow.importers.sheets.decision_rules import REFUSED, TIGHTENS
+from specflow.importers.sheets.decision_rules import COMPARISONS, REFUSED, TIGHTENS
 from specflow.importers.sheets.sheet import MARK_COLUMN
 from specflow.model.block import HardwareType, Tier
 from specflow.model.requirement import Method, Obligation, RuleName, Stage
@@ -261,6 +261,22 @@ _HOW_PROVED = (
         guidance=f"What happens above that ceiling. Empty: {REFUSED}.",
         choices=(REFUSED, TIGHTENS),
         width=18,
+    ),
+    SheetColumn(
+        key="comparison",
+        title="Comparison",
+        field="decision_rule",
+        guidance="Values are compared unrounded (empty: absolute), or rounded to the digits of the limit.",
+        choices=COMPARISONS,
+        width=12,
+    ),
+    SheetColumn(
+        key="conditional_pass_counts",
+        title="Conditional pass counts",
+        field="decision_rule",
+        guidance="Four-way rule: whether a pass inside the guard band proves its point. Empty: yes.",
+        choices=("yes", "no"),
+        width=14,
     ),
     SheetColumn(
         key="test_tolerance",

@@ -4,36 +4,40 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
+from specflow.conditions import find_dimension
 from specflow.errors import UnitError
 from specflow.importers.sheets.decision_rules import decision_rule, provers, with_test_tolerance
-from specflow.importers.sheets.intake import Intake, near
+from specflow.importers.sheets.intake import Intake
 from specflow.importers.sheets.parameters import known_parameter
 from specflow.importers.sheets.plans import plan_in_row
 from specflow.importers.sheets.requirement_columns import LAYOUT
 from specflow.importers.sheets.row import SheetRow
 from specflow.importers.sheets.sheet import Sheet
-from specflow.limits import alternatives, limit_words, parse_condition, parse_limit
+from specflow.importers.sheets.spelling import near
+from specflow.limits import alternatives, limit_inputs, limit_words, parse_condition, parse_limit
 from specflow.model.base import MAX_CODE_LENGTH, code_key
 from specflow.model.block import Block, Tier
 from specflow.model.conditions import ConditionsSet
+from specflow.model.declared import DeclaredValue
 from specflow.model.limit import Limit, LimitState, MeasuredIn
-from specflow.model.parameter import Parameter, QuantityIdentity
+from specflow.model.parameter import Better, Parameter, QuantityIdentity
 from specflow.model.requirement import Obligation, OpenValue, Requirement, Source
 from specflow.parameters import Candidate, suits
-from specflow.units import ONE, convert, format_quantity, parse_quantity, parse_unit
+from specflow.units import ONE, convert, format_value, parse_quantity, parse_unit
 
 _ALWAYS = frozenset({"", "u", "always", "all", "unconditional"})
 _NONE = frozenset({"none", "no conditions"})
+_NO_NUMBERS = frozenset({"nan", "inf", "infinity"})
+_SIZES = (("GHz", 1e9), ("MHz", 1e6), ("kHz", 1e3), ("Hz", 1.0))
 
 
 def read(rows: Sequence[SheetRow], intake: Intake) -> None:
     """Add one requirement a row, with the activities its shorthand columns plan."""
     for row in rows:
         requirement = _requirement(row, intake)
-        if requirement is None:
+        if requirement is None or not plan_in_row(row, requirement, intake):
             continue
         intake.add(requirement, row.stated())
-        plan_in_row(row, requirement, intake)
         parameter = intake.dictionary.get(requirement.quantity.parameter)
         words = limit_words(requirement.limit, parameter)
         intake.echo(requirement.id, words)
@@ -42,11 +46,14 @@ def read(rows: Sequence[SheetRow], intake: Intake) -> None:
 def _requirement(row: SheetRow, intake: Intake) -> Requirement | None:
     named = known_parameter(row, "parameter", intake)
     parameter = named.parameter if named else None
-    limit = _limit(row, parameter)
+    limit = _limit(row, intake, parameter)
     block = _block(row, intake)
     quantity = _quantity(row, intake, named, limit, block)
     parents, reason = _parents(row, intake)
     rule = decision_rule(row, limit, parameter)
+    conditions = _conditions(row, intake)
+    if limit is not None:
+        _check_inputs(row, intake, limit, conditions)
     fields = {
         "title": row.prose("title") or (parameter.title if parameter else ""),
         "statement": row.prose("statement"),
@@ -59,7 +66,7 @@ def _requirement(row: SheetRow, intake: Intake) -> Requirement | None:
         "tier": row.choice("tier", Tier, block.tier if block else Tier.SYSTEM),
         "obligation": row.choice("obligation", Obligation, Obligation.SHALL),
         "open_value": _open_value(row, limit),
-        "conditions": _conditions(row, intake),
+        "conditions": conditions,
         "applicability": _applicability(row),
         "provers": provers(row, intake),
         "met_by_lower_level": row.yes("met_by_lower_level", False),
@@ -94,21 +101,43 @@ _PROSE = (
 )
 
 
-def _limit(row: SheetRow, parameter: Parameter | None) -> Limit | None:
+def _limit(row: SheetRow, intake: Intake, parameter: Parameter | None) -> Limit | None:
     """The limit; a bare number needs the unit column, unless the parameter is a plain number."""
     text = row.needed("limit")
     hint = row.text("unit") or row.units.get("limit", "")
     if hint:
         row.attempt("unit" if row.text("unit") else "limit", lambda: parse_unit(hint))
-    if not text or parameter is None or (not row.sound and "unit" in row.spoiled):
+    if parameter is None and text:
+        _check_grammar(row, text, hint)
+    if not text or parameter is None or "unit" in row.spoiled:
         return None
     if not hint and parse_unit(parameter.unit) == ONE:
         hint = parameter.unit
     limit = row.attempt("limit", lambda: parse_limit(text, unit_hint=hint, parameter=parameter))
-    if limit is None or (not hint and _lacks_unit(row, text, parameter)):
+    if limit is None or _lacks_number(row, limit, intake) or (not hint and _lacks_unit(row, text, parameter)):
         return None
     _check_kind(row, limit, parameter)
     return limit
+
+
+def _check_grammar(row: SheetRow, text: str, hint: str) -> None:
+    """Where the parameter is not known: find the mistakes in the limit that no parameter would mend."""
+    unknown = Parameter(
+        key=row.text("parameter") or "unknown", title="", group="", unit=hint or "1", better=Better.HIGHER
+    )
+    row.attempt("limit", lambda: parse_limit(text, unit_hint=hint, parameter=unknown))
+
+
+def _lacks_number(row: SheetRow, limit: Limit, intake: Intake) -> bool:
+    """Whether a unit or "NaN" was read as a name, because the number before it is missing."""
+    for name in limit_inputs(limit):
+        is_unit = name == limit.unit and all(value.name != name for value in intake.all(DeclaredValue))
+        if is_unit or name.casefold() in _NO_NUMBERS:
+            row.fault(
+                "limit", f"{name} stands where the limit {limit.text!r} needs a number", "write the number"
+            )
+            return True
+    return False
 
 
 def _lacks_unit(row: SheetRow, text: str, parameter: Parameter) -> bool:
@@ -132,6 +161,23 @@ def _check_kind(row: SheetRow, limit: Limit, parameter: Parameter) -> None:
         )
 
 
+def _check_inputs(row: SheetRow, intake: Intake, limit: Limit, conditions: str | None) -> None:
+    """Say which names of a formula nobody supplies so far: no declared value, no condition, no parameter."""
+    declared = [value.name for value in intake.all(DeclaredValue)]
+    known = intake.find(ConditionsSet, conditions)
+    own = {dimension.name for dimension in known.dimensions} if known else set()
+    for name in sorted(limit_inputs(limit) - own - set(declared)):
+        if find_dimension(name) is None and not intake.dictionary.match(name):
+            intake.note(
+                row,
+                "limit",
+                f"the limit refers to {name}, which is neither declared nor a known condition"
+                + near(name, declared),
+                f"declare {name} on the sheet Declared values, or name a condition that is recorded",
+                rule="workbook-unknown-input",
+            )
+
+
 def _block(row: SheetRow, intake: Intake) -> Block | None:
     """The block that is named; the system where none is named and there is only one."""
     code = row.text("block")
@@ -139,7 +185,7 @@ def _block(row: SheetRow, intake: Intake) -> Block | None:
         intake.link(row, "block", Block, code)
         return intake.find(Block, code)
     roots = [block for block in intake.all(Block) if block.parent is None]
-    if len(roots) == 1:
+    if len(roots) == 1 and "block" not in row.spoiled:
         intake.note(
             row,
             "block",
@@ -194,7 +240,7 @@ def _bandwidth(row: SheetRow, intake: Intake, parameter: Parameter, limit: Limit
         row.fault(
             "bandwidth",
             f"the reference bandwidth is {row.text('bandwidth')}, but the limit {limit.text if limit else ''} "
-            f"is per {format_quantity(implied, parse_unit('Hz'))}",
+            f"is per {_bandwidth_words(implied)}",
             "state the same bandwidth in both, or leave this cell empty",
         )
     found = stated if stated is not None else implied
@@ -212,6 +258,11 @@ def _bandwidth(row: SheetRow, intake: Intake, parameter: Parameter, limit: Limit
             rule="workbook-no-bandwidth",
         )
     return found
+
+
+def _bandwidth_words(hertz: float) -> str:
+    unit, size = next((one for one in _SIZES if hertz >= one[1]), _SIZES[-1])
+    return f"{format_value(hertz / size)} {unit}"
 
 
 def _implied_bandwidth(limit: Limit) -> float | None:

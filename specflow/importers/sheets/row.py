@@ -50,14 +50,15 @@ class SheetRow:
         return column in self.columns
 
     def origin(self, column: str = "") -> Origin:
-        """Return the place of a cell; without a column, of the row."""
+        """Return the place of a cell; of the first column that must be there where the sheet lacks that column."""
+        place = self.columns.get(column) or self.columns.get(self.layout.required[0].key)
         sheet = "" if self.grid.name == self.grid.file else self.grid.name
         return Origin(
             file=self.grid.file,
             sha256=self.sha256,
             sheet=sheet,
             row=self.number,
-            column=self.columns.get(column),
+            column=place,
         )
 
     def report(
@@ -200,7 +201,10 @@ class SheetRow:
         try:
             return make()
         except SpecflowError as error:
-            self.fault(column, error.message, error.hint or remedy or self._guidance(column))
+            message = error.message
+            if error.where.startswith("column "):
+                message += f", at {error.where} of {self.text(column)!r}"
+            self.fault(column, message, error.hint or remedy or self._guidance(column))
         except ValidationError as error:
             for detail in error.errors():
                 self.fault(column, _plain(detail["msg"]), remedy or self._guidance(column))

@@ -9,6 +9,7 @@ from dataclasses import dataclass, field
 from specflow.importers.readers.grid import CellRange, Grid, address, is_blank
 from specflow.importers.sheets.cells import clean
 from specflow.importers.sheets.row import SheetRow
+from specflow.importers.sheets.spelling import near
 from specflow.model.finding import Finding, Severity
 from specflow.model.origin import Origin
 from specflow.model.sheet import EXAMPLE, SheetColumn, SheetLayout, header_key
@@ -102,6 +103,7 @@ def read_table(
         if _holds_something(grid, number, header) and not _is_example(grid, number, header)
     ]
     _report_hidden(rows, grid)
+    _spoil_headings(rows)
     _spoil_merged(rows, grid, header)
     return rows
 
@@ -147,6 +149,7 @@ def _is_example(grid: Grid, number: int, header: Header) -> bool:
 def _report_headers(
     grid: Grid, layout: SheetLayout, header: Header, sha256: str, findings: list[Finding]
 ) -> None:
+    titles = [column.title for column in layout.columns]
     for place, text in header.unknown:
         findings.append(
             Finding(
@@ -155,7 +158,7 @@ def _report_headers(
                 subject=layout.title,
                 subject_kind=layout.noun,
                 message=f"the column {text!r} is not known here and was not read",
-                remedy="rename it if it is one of: " + ", ".join(column.title for column in layout.columns),
+                remedy="rename it to a header of the template if it should be read" + near(text, titles),
                 origin=_origin(grid, sha256, header.row, place),
             )
         )
@@ -184,6 +187,21 @@ def _report_hidden(rows: Sequence[SheetRow], grid: Grid) -> None:
                 rule="workbook-hidden-row",
                 severity=Severity.ERROR,
             )
+
+
+def _spoil_headings(rows: Sequence[SheetRow]) -> None:
+    """A row of which one cell is filled gets one finding, not one for each cell that is missing."""
+    for row in rows:
+        filled = [
+            key for key, place in row.columns.items() if not is_blank(row.grid.value(row.number, place))
+        ]
+        if len(filled) == 1 and len(row.layout.required) > 2 and filled[0] != MARK:
+            row.fault(
+                filled[0],
+                f"only the column {row.layout.column(filled[0]).title} of this row is filled in",
+                "fill in the row; if it is a heading, delete it, or move it above the header row",
+            )
+            row.spoiled.update(column.key for column in row.layout.columns)
 
 
 def _spoil_merged(rows: Sequence[SheetRow], grid: Grid, header: Header) -> None:
