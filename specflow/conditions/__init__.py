@@ -10,12 +10,9 @@ it in words. Limits and verdicts do not live here: a caller says which records a
 """
 
 from specflow.conditions.assemble import make_conditions_set, read_combination, read_exclusions
+from specflow.conditions.dictionary import DIRECTION_PAIRS, KNOWN_DIMENSIONS, Comparison, KnownDimension
 from specflow.conditions.difference import conditions_difference
 from specflow.conditions.dimensions import (
-    DIRECTION_PAIRS,
-    KNOWN_DIMENSIONS,
-    Comparison,
-    KnownDimension,
     find_dimension,
     is_unlocated_temperature,
     known_dimension,
@@ -24,14 +21,13 @@ from specflow.conditions.dimensions import (
 from specflow.conditions.expand import MOST_POINTS, compile_points, expand, point_count
 from specflow.conditions.maps import map_columns, parse_map_entry, unmap_columns
 from specflow.conditions.match import Matching, match, unstated_conditions
+from specflow.conditions.mismatch import explain_mismatch, missing_words
 from specflow.conditions.parse import ReadDimension, parse_dimension, read_dimension, read_rule
 from specflow.conditions.points import Points
 from specflow.conditions.proof import proves, range_gaps
 from specflow.conditions.words import (
     conditions_words,
     dimension_words,
-    explain_mismatch,
-    missing_words,
     point_words,
     set_words,
     value_words,

@@ -16,7 +16,7 @@ from numpy.typing import NDArray
 
 from specflow.conditions.dimensions import word_key
 from specflow.conditions.recorded import recorded_numbers, recorded_words
-from specflow.model.columns import UNSTATED, Columns, TextColumn
+from specflow.model.columns import Columns, TextColumn
 
 Floats = NDArray[np.float64]
 Codes = NDArray[np.int64]
@@ -247,7 +247,7 @@ class TextAxis:
         if column is None:
             return None
         codes = [self._codes.get(word_key(self.name, label), np.nan) for label in column.labels]
-        return np.array([*codes, np.nan])[column.codes]  # UNSTATED is the last place
+        return np.array([*codes, np.nan])[column.codes]  # -1, unstated, takes the last place
 
     def ends(self, codes: Codes) -> tuple[Columns, Columns]:
         same = Columns(len(codes), text={self.name: TextColumn(codes.astype(np.int32), self.words)})
@@ -267,6 +267,3 @@ class TextAxis:
 
     def required_coordinates(self, codes: Codes) -> tuple[Floats, ...]:
         return self.coordinates(codes.astype(np.float64))
-
-
-assert UNSTATED == -1, "text axes index labels from the end for what is unstated"

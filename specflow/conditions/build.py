@@ -8,7 +8,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.conditions.axes import Axis, Extent, Floats, NumericAxis, TextAxis, slack
-from specflow.conditions.dimensions import DirectionPair, direction_pair, is_periodic, word_key
+from specflow.conditions.dictionary import DirectionPair
+from specflow.conditions.dimensions import direction_pair, is_periodic, word_key
 from specflow.conditions.directions import ANGLE_UNIT, CutAxis, DirectionAxis, direction_vectors
 from specflow.conditions.recorded import conversion
 from specflow.errors import ConditionsError

@@ -7,6 +7,7 @@ read where semicolons separate, and a cell that has two readings is refused with
 from __future__ import annotations
 
 import re
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 from specflow.errors import ConditionsError, UnitError
@@ -16,6 +17,8 @@ _RANGE_WORDS = re.compile(
     r"^(?:from\s+)?(?P<low>.+?)\s*(?:\bto\b|\.\.+|…|–|—)\s*(?P<high>.+)$", re.IGNORECASE
 )
 _RANGE_HYPHEN = re.compile(r"^(?P<low>[+-]?[\d.,]*\d\s*[^\d\s,;-]*)\s*-\s*(?P<high>[+-]?\d.*)$")
+_SURELY_DECIMAL = re.compile(r"^[+-]?(?:0,\d+|\d*,(?:\d{1,2}|\d{4,}))(?!\d)")
+_ANY_COMMA = re.compile(r"^[+-]?\d*,\d+(?![\d,.])")
 _ONE_COMMA = re.compile(r"^\s*[+-]?\d+,\d+\D*$")
 
 
@@ -42,21 +45,29 @@ def plain(text: str) -> str:
     return " ".join(text.split())
 
 
-def read_number(text: str) -> Number:
+def read_number(text: str, *, decimal_comma: bool | None = None) -> Number:
     """Read "30 GHz", "-40", "27,5GHz". ConditionsError where it is no number, or the unit is not known."""
     try:
         number, unit = split_quantity(text)
         if unit:
             parse_unit(unit)
-        return Number(parse_number(number), unit)
+        return Number(parse_number(number, decimal_comma=decimal_comma), unit)
     except UnitError as error:
         raise ConditionsError(error.message, hint=error.hint) from error
 
 
+def read_numbers(entries: Sequence[str]) -> list[Number]:
+    """Read the numbers of one list: where one of them shows a decimal comma, all commas are decimal."""
+    shown = any(_SURELY_DECIMAL.match(entry) for entry in entries)
+    return [
+        read_number(entry, decimal_comma=True if shown and "." not in entry else None) for entry in entries
+    ]
+
+
 def is_number(text: str) -> bool:
-    """Whether the text is a number, with or without a known unit."""
+    """Whether the text is a number, with or without a known unit (and perhaps with a comma of unclear meaning)."""
     try:
-        read_number(text)
+        read_number(text, decimal_comma=True if _ANY_COMMA.match(text) else None)
     except ConditionsError:
         return False
     return True

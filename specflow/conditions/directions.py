@@ -18,12 +18,13 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.conditions.axes import EXACT_SLACK, MISSED, Codes, Extent, Floats
-from specflow.conditions.dimensions import DirectionPair
+from specflow.conditions.dictionary import DirectionPair
 from specflow.conditions.recorded import recorded_numbers
 from specflow.conditions.search import nearest_values
 from specflow.model.columns import Columns
 
 ANGLE_UNIT = "deg"
+_TURNED = 1e-6  # weight of the stated turn, far below any angle that matters
 _FEW = 24  # directions up to which comparing with each is faster than searching
 
 
@@ -183,25 +184,26 @@ class CutAxis:
         count = np.zeros(len(seen), np.int64)
         for code in range(self.size):
             distance = self.closeness(seen, np.full(len(seen), code))
-            # At boresight all cuts are equally near: the turn that was stated says which cut it was taken on.
-            distance = distance + 1e-6 * self._turned_away(seen, code)
             nearer = distance < best
             codes[nearer], best[nearer] = code, distance[nearer]
             count += np.isfinite(distance)
-        return np.where(codes < 0, MISSED, codes * stride), (count > 1) & (best > 1e-6)
+        return np.where(codes < 0, MISSED, codes * stride), (count > 1) & (best > _TURNED)
 
-    def _turned_away(self, seen: Floats, code: int) -> Floats:
+    def _turned_away(self, seen: Floats, codes: Codes) -> Floats:
         """Return 0..1: how far the stated turn is from that of a cut; 1 where nothing is stated."""
         if self.around:
             return np.zeros(len(seen))
-        return np.nan_to_num(np.abs(wrapped(seen[:, 3] - self.at[code], 0.0)) / 180.0, nan=1.0)
+        return np.nan_to_num(np.abs(wrapped(seen[:, 3] - self.at[codes], 0.0)) / 180.0, nan=1.0)
 
     def closeness(self, seen: Floats, codes: Codes) -> Floats:
         off = np.abs(self._off(seen, codes))
         along = self.along(seen, codes)
         low, high = self.extent.low - self.allowed, self.extent.high + self.allowed
         inside = (off <= self.allowed) & (along >= low) & (along <= high)
-        return np.asarray(np.where(inside, off / self.allowed, np.inf))
+        # At boresight all cuts are equally near: the turn that was stated says on which one it was recorded.
+        return np.asarray(
+            np.where(inside, off / self.allowed + _TURNED * self._turned_away(seen, codes), np.inf)
+        )
 
     def along(self, seen: Floats, codes: Codes) -> Floats:
         """Return where on the cut each direction lies, in degrees of the angle that is the range."""

@@ -5,6 +5,7 @@ from __future__ import annotations
 import weakref
 from dataclasses import dataclass
 from math import prod
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -62,9 +63,13 @@ def compile_points(conditions: ConditionsSet) -> Points:
     known = _compiled.get(id(conditions))
     if known is not None and known[0]() is conditions:
         return known[1]
-    points = expand(conditions)
+    points = expand(conditions.model_copy())  # a copy: the points must not keep alive what they are kept for
     key = id(conditions)
-    _compiled[key] = (weakref.ref(conditions, lambda _: _compiled.pop(key, None)), points)
+
+    def forget(_: weakref.ref[ConditionsSet], known: dict[int, Any] = _compiled) -> None:
+        known.pop(key, None)
+
+    _compiled[key] = (weakref.ref(conditions, forget), points)
     return points
 
 

@@ -19,7 +19,7 @@ from numpy.typing import NDArray
 
 from specflow.conditions.cells import is_number, plain, read_number
 from specflow.conditions.dimensions import find_dimension
-from specflow.conditions.recorded import conversion, recorded_numbers
+from specflow.conditions.recorded import conversion
 from specflow.conditions.setting import difference_in
 from specflow.errors import ConditionsError
 from specflow.model.columns import Columns, TextColumn
@@ -166,20 +166,20 @@ def _step(source: str, target: str, where: str) -> Converter | None:
 
 
 def _mapped(entry: MapEntry, columns: Columns, where: str) -> tuple[Floats, str] | None:
+    if any(term.dimension not in columns.numeric for term in entry.terms):
+        return None
     unit = _unit(entry, columns)
     total = np.full(columns.size, _offset(entry, unit, where))
     for term in entry.terms:
-        stated = recorded_numbers(columns, term.dimension, unit)
-        if stated is None:
-            _refuse_unlike(term, columns, unit, where)
-            return None
-        total = total + term.factor * stated
+        total = total + term.factor * _stated(term, columns, unit, where)
     return total, unit
 
 
-def _refuse_unlike(term: MapTerm, columns: Columns, unit: str, where: str) -> None:
-    if term.dimension in columns.numeric:
-        _step(columns.units.get(term.dimension, ""), unit, where)
+def _stated(term: MapTerm, columns: Columns, unit: str, where: str) -> Floats:
+    """Return the values of a source that the columns state, in the unit of the sum."""
+    step = _step(columns.units.get(term.dimension, ""), unit, where)
+    values = columns.numeric[term.dimension]
+    return values if step is None else np.asarray(step(values))
 
 
 def _source_to_solve(entry: MapEntry, columns: Columns) -> MapTerm | None:
@@ -204,13 +204,8 @@ def _solved(entry: MapEntry, source: MapTerm, columns: Columns, where: str) -> t
     target = columns.numeric[entry.target]
     rest = (target if step is None else np.asarray(step(target))) - _offset(entry, unit, where)
     for term in entry.terms:
-        if term is source:
-            continue
-        stated = recorded_numbers(columns, term.dimension, unit)
-        if stated is None:
-            _refuse_unlike(term, columns, unit, where)
-            return np.full(columns.size, np.nan), unit
-        rest = rest - term.factor * stated
+        if term is not source:
+            rest = rest - term.factor * _stated(term, columns, unit, where)
     return rest / source.factor, unit
 
 

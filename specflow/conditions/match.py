@@ -14,7 +14,7 @@ from numpy.typing import NDArray
 
 from specflow.conditions.axes import Axis, Floats, NumericAxis, TextAxis
 from specflow.conditions.points import LARGEST_KEY, Points
-from specflow.conditions.recorded import recording_note
+from specflow.conditions.recorded import recorded_words, recording_note
 from specflow.conditions.search import nearest_points
 from specflow.model.columns import Columns
 
@@ -155,9 +155,9 @@ def _notes(points: Points, records: Columns) -> tuple[str, ...]:
 
 def _unstated(axis: Axis, name: str, records: Columns) -> Rows:
     if isinstance(axis, TextAxis):
-        column = records.text.get(name)
-        if column is not None:
-            return np.flatnonzero(column.codes < 0).astype(np.int32)
+        words = recorded_words(records, name)
+        if words is not None:
+            return np.flatnonzero(words.codes < 0).astype(np.int32)
     actual = axis.read(records)
     if actual is None:
         return np.arange(records.size, dtype=np.int32)

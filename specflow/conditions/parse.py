@@ -17,10 +17,17 @@ from dataclasses import dataclass, replace
 
 from pydantic import ValidationError
 
-from specflow.conditions.cells import Number, is_number, plain, read_number, split_list, split_range
+from specflow.conditions.cells import (
+    Number,
+    is_number,
+    plain,
+    read_number,
+    read_numbers,
+    split_list,
+    split_range,
+)
+from specflow.conditions.dictionary import Comparison, KnownDimension
 from specflow.conditions.dimensions import (
-    Comparison,
-    KnownDimension,
     find_dimension,
     is_unlocated_temperature,
     unlocated_temperature_hint,
@@ -279,7 +286,7 @@ def _read_numbers(
 ) -> ReadDimension:
     name = str(fields["name"])
     rule = typed.rule or MatchingRule.WITHIN
-    numbers = [read_number(entry) for entry in entries]
+    numbers = read_numbers(entries)
     unit = _unit(known, name, numbers, typed.tolerance, unit_cell)
     values = tuple(_in_unit(number, unit, name) for number in numbers)
     setting = read_tolerance(typed.tolerance, unit, name)

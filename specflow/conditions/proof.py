@@ -44,8 +44,10 @@ def range_gaps(points: Points, matching: Matching, good: Good, point: int) -> tu
 
     Empty for a proved point. A missing end is the part from the end to the nearest evidence value.
     """
+    if matching.along is None:
+        return ()
     extent = range_extent(points)
-    if matching.along is None or extent.largest_gap is None:
+    if extent.largest_gap is None:
         return ()
     along = matching.along[good[matching.record] & (matching.point == point)]
     if len(along) == 0:

@@ -2,14 +2,10 @@
 
 from __future__ import annotations
 
-import numpy as np
-from numpy.typing import NDArray
+import math
 
-from specflow.conditions.dimensions import find_dimension, is_unlocated_temperature, known_dimension
-from specflow.conditions.match import Matching
+from specflow.conditions.dimensions import known_dimension
 from specflow.conditions.points import Points
-from specflow.conditions.proof import range_gaps
-from specflow.conditions.recorded import recorded_numbers, recording_note
 from specflow.model.columns import Columns
 from specflow.model.conditions import Combination, ConditionsSet, Dimension, Exclusion, MatchingRule, Need
 from specflow.units import format_unit, format_value, parse_unit, tolerance_unit
@@ -17,7 +13,7 @@ from specflow.units import format_unit, format_value, parse_unit, tolerance_unit
 
 def value_words(name: str, value: float, unit: str) -> str:
     """Say one value of a dimension: "29.5 GHz", "+85 °C ambient", "θ 30°", "supply 5 V"."""
-    return _phrased(name, _quantity(name, value, unit))
+    return _phrased(name, quantity_words(name, value, unit))
 
 
 def word_words(name: str, word: str) -> str:
@@ -37,18 +33,25 @@ def conditions_words(columns: Columns, row: int, columns_hi: Columns | None = No
         low = float(values[row])
         high = low if columns_hi is None else float(columns_hi.numeric[name][row])
         unit = columns.units.get(name, "")
-        if low != high:
-            parts.append(range_words(name, low, high, unit))
-        elif low == low:
+        if low == high:
             parts.append(value_words(name, low, unit))
+        elif not math.isnan(low):
+            parts.append(range_words(name, low, high, unit))
     parts += [word_words(name, column.word(row)) for name, column in columns.text.items() if column.word(row)]
     return ", ".join(parts)
 
 
 def range_words(name: str, low: float, high: float, unit: str) -> str:
     """Say a range: "27.5 to 30 GHz", "-40 to +85 °C ambient"."""
-    first = _quantity(name, low, "") if _unit_sign(unit) else _quantity(name, low, unit)
-    return _phrased(name, f"{_signed(name, low, unit, first)} to {_quantity(name, high, unit)}")
+    first = quantity_words(name, low, "") if _unit_sign(unit) else quantity_words(name, low, unit)
+    return _phrased(name, f"{_signed(name, low, unit, first)} to {quantity_words(name, high, unit)}")
+
+
+def ends_words(name: str, low: Columns, high: Columns, row: int) -> str:
+    """Say what one row asks of a dimension, one value or a range."""
+    first, last = float(low.numeric[name][row]), float(high.numeric[name][row])
+    unit = low.units.get(name, "")
+    return value_words(name, first, unit) if first == last else range_words(name, first, last, unit)
 
 
 def dimension_words(dimension: Dimension) -> str:
@@ -67,8 +70,8 @@ def dimension_words(dimension: Dimension) -> str:
         what = range_words(name, dimension.span.low, dimension.span.high, dimension.unit)
     else:
         *others, last = dimension.values
-        first = [_signed(name, value, dimension.unit, _quantity(name, value, "")) for value in others]
-        what = _phrased(name, ", ".join([*first, _quantity(name, last, dimension.unit)]))
+        first = [_signed(name, value, dimension.unit, quantity_words(name, value, "")) for value in others]
+        what = _phrased(name, ", ".join([*first, quantity_words(name, last, dimension.unit)]))
     return what + _setting_words(dimension) + excused
 
 
@@ -103,133 +106,6 @@ def exclusion_words(exclusion: Exclusion) -> str:
     return " and ".join(parts)
 
 
-def explain_mismatch(points: Points, point: int, records: Columns) -> str:
-    """Say why no record serves a point: the nearest record and which dimensions are off, by how much.
-
-    "" where some record is within the tolerance of the point.
-    """
-    if records.size == 0:
-        return "there is no record"
-    off = [_off(points, place, point, records) for place in range(len(points.axes))]
-    if not off:
-        return ""
-    missed = np.stack([np.nan_to_num(one, nan=np.inf) for one in off])
-    wrong = missed > 0
-    how_many = wrong.sum(axis=0)
-    finite = np.where(np.isfinite(missed), missed, 1e6)
-    nearest = int(np.lexsort((finite.sum(axis=0), how_many))[0])
-    if how_many[nearest] == 0:
-        return ""
-    sentences = [
-        _mismatch(points, place, point, records, nearest)
-        for place in range(len(points.axes))
-        if wrong[place, nearest]
-    ]
-    return "; ".join(sentences)
-
-
-def missing_words(
-    points: Points, point: int, matching: Matching, records: Columns, good: NDArray[np.bool_]
-) -> str:
-    """Say what a point still lacks, given which records are good: gaps of a range, else the nearest record's
-    fault.
-    """
-    gaps = range_gaps(points, matching, good, point)
-    if gaps and bool(good[matching.record][matching.point == point].any()):
-        name = points.range_dimension
-        unit = points.columns_lo.units.get(name, "")
-        step = _quantity(name, points.step[name], unit, signed=False)
-        spoken = ", ".join(range_words(name, low, high, unit) for low, high in gaps)
-        return f"no evidence from {spoken} (largest gap allowed: {step})"
-    serving = good & _serves(matching, point, records.size)
-    if serving.any() and not gaps:
-        return ""
-    rows = np.flatnonzero(good)
-    return explain_mismatch(points, point, records.take(rows)) if len(rows) else "no record counts"
-
-
-def _serves(matching: Matching, point: int, size: int) -> NDArray[np.bool_]:
-    serves = np.zeros(size, np.bool_)
-    serves[matching.record[matching.point == point]] = True
-    return serves
-
-
-def _off(points: Points, place: int, point: int, records: Columns) -> NDArray[np.float64]:
-    """Return how far each record is from serving one axis of a point: 0 where it does, inf where it cannot be
-    told.
-    """
-    axis = points.axes[place]
-    seen = axis.read(records)
-    if seen is None:
-        return np.full(records.size, np.inf)
-    code = np.full(records.size, points.codes[place][point])
-    served = np.isfinite(axis.closeness(seen, code))
-    distance = np.ones(records.size)
-    for name in axis.names:
-        required = points.columns_lo.numeric.get(name)
-        actual = None if required is None else recorded_numbers(records, name, points.columns_lo.units[name])
-        if required is not None and actual is not None:
-            low, high = float(required[point]), float(points.columns_hi.numeric[name][point])
-            outside = np.maximum(np.maximum(low - actual, actual - high), 0)
-            distance = distance + outside / (np.ptp(required) or abs(low) or 1.0)
-    return np.where(served, 0.0, distance)
-
-
-def _mismatch(points: Points, place: int, point: int, records: Columns, row: int) -> str:
-    parts = []
-    for name in points.axes[place].names:
-        parts.append(_mismatch_of(points, name, point, records, row))
-    told = [part for part in parts if part]
-    return "; ".join(told) or "the direction is off"
-
-
-def _mismatch_of(points: Points, name: str, point: int, records: Columns, row: int) -> str:
-    if name in points.columns_lo.text:
-        asked = word_words(name, points.columns_lo.text[name].word(point))
-        column = records.text.get(name)
-        stated = column.word(row) if column is not None else ""
-        return (
-            f"{word_words(name, stated)} is not {asked}" if stated else _unstated_words(name, asked, records)
-        )
-    unit = points.columns_lo.units[name]
-    low, high = float(points.columns_lo.numeric[name][point]), float(points.columns_hi.numeric[name][point])
-    asked = value_words(name, low, unit) if low == high else range_words(name, low, high, unit)
-    actual = recorded_numbers(records, name, unit)
-    if actual is None or actual[row] != actual[row]:
-        note = recording_note(records, name, unit) if actual is None else ""
-        return note or _unstated_words(name, asked, records)
-    value = float(actual[row])
-    if low <= value <= high:
-        return ""
-    away = low - value if value < low else value - high
-    allowed = _allowed_words(points, name)
-    relation = "is not within" if low != high else "is not"
-    return (
-        f"{value_words(name, value, unit)} {relation} {asked} (off by {_difference(away, unit)}, {allowed})"
-    )
-
-
-def _allowed_words(points: Points, name: str) -> str:
-    dimension = points.conditions.dimension(name)
-    if dimension is None or dimension.tolerance == 0:
-        return "no setting tolerance stated"
-    if dimension.tolerance_is_percent:
-        return f"{format_value(dimension.tolerance)} % allowed"
-    return f"{_difference(dimension.tolerance, dimension.unit)} allowed"
-
-
-def _unstated_words(name: str, asked: str, records: Columns) -> str:
-    located = [other for other in records.names if other.startswith("temperature_") and other != name]
-    if name.startswith("temperature_") and located:
-        return f"{asked} is asked, the record states {located[0]}: unlike places need a condition map"
-    if name.startswith("temperature_") and any(is_unlocated_temperature(other) for other in records.names):
-        return f"{asked} is asked, the record does not say whose temperature it states"
-    known = find_dimension(name)
-    return (
-        f"{asked} is asked, the record does not state the {known.title if known else name.replace('_', ' ')}"
-    )
-
-
 def _combination_words(conditions: ConditionsSet) -> str:
     if conditions.combination is Combination.LISTED and conditions.listed:
         return f"{conditions.combination.value} of {' and '.join(conditions.listed)}, with all others"
@@ -239,26 +115,28 @@ def _combination_words(conditions: ConditionsSet) -> str:
 def _setting_words(dimension: Dimension) -> str:
     parts = []
     if dimension.span is not None and dimension.span.step is not None:
-        parts.append(f"gaps up to {_difference(dimension.span.step, dimension.unit)}")
+        parts.append(f"gaps up to {difference_words(dimension.span.step, dimension.unit)}")
     if dimension.rule is not MatchingRule.WITHIN:
         parts.append(dimension.rule.value)
     if dimension.tolerance_is_percent:
         parts.append(f"± {format_value(dimension.tolerance)} %")
     elif dimension.tolerance:
-        parts.append(f"± {_difference(dimension.tolerance, dimension.unit)}")
+        parts.append(f"± {difference_words(dimension.tolerance, dimension.unit)}")
     elif dimension.rule is MatchingRule.WITHIN and dimension.span is None:
         parts.append("exact")
     return f" ({', '.join(parts)})" if parts else ""
 
 
-def _difference(value: float, unit: str) -> str:
+def difference_words(value: float, unit: str) -> str:
+    """Say a difference of values in ``unit``: "2 K" for °C, "3 dB" for dBm, "5°" for deg."""
     if not unit:
         return format_value(value)
     sign = format_unit(tolerance_unit(parse_unit(unit)))
     return f"{format_value(value)}{'°' if sign == 'deg' else ' ' + sign}"
 
 
-def _quantity(name: str, value: float, unit: str, *, signed: bool = True) -> str:
+def quantity_words(name: str, value: float, unit: str, *, signed: bool = True) -> str:
+    """Say a value with its unit, a temperature in °C with its sign."""
     number = format_value(value)
     if signed:
         number = _signed(name, value, unit, number)

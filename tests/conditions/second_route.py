@@ -29,15 +29,15 @@ def _serves(
 def serving(points: Points, records: Columns) -> list[list[tuple[int, float]]]:
     """For each record the points that it may serve, with the distance (root of squares in tolerances)."""
     low = points.columns_lo
-    extremes = {name: (min(values), max(values)) for name, values in low.numeric.items() if len(values)}
+    dimensions = {one.name: one for one in points.conditions.dimensions}
+    extremes = {name: (min(dimensions[name].values), max(dimensions[name].values)) for name in low.numeric}
     found: list[list[tuple[int, float]]] = []
     for record in range(records.size):
         candidates = []
         for point in range(points.size):
             total = 0.0
             for name, required_values in low.numeric.items():
-                dimension = points.conditions.dimension(name)
-                assert dimension is not None
+                dimension = dimensions[name]
                 required = float(required_values[point])
                 actual = float(records.numeric[name][record]) if name in records.numeric else math.nan
                 tolerance = dimension.tolerance * (

@@ -174,6 +174,19 @@ def test_boresight_serves_the_cut_on_which_it_was_recorded() -> None:
     assert len(matching.ambiguous) == 0
 
 
+def test_boresight_finds_its_cut_where_some_are_excluded_too() -> None:
+    points = expand(
+        a_set(
+            "theta: -30 to 30 deg step 30 deg ± 1 deg",
+            "phi: 0, 90 deg",
+            "mode: A, B",
+            exclusions="mode = B",
+        )
+    )
+    records = rows(theta=[-30, 0, 30] * 2, phi=[0.0] * 3 + [90.0] * 3, mode=["A"] * 6)
+    assert proves(points, match(points, records), everything(records)).tolist() == [True, True]
+
+
 def test_a_direction_off_the_cut_does_not_serve_it() -> None:
     points = expand(a_set("theta: 0 to 60 deg step 30 deg ± 1 deg", "phi: 0 deg"))
     # 2 deg of phi are 1 deg off the cut at theta 30 deg and 1.7 deg off at theta 60 deg.

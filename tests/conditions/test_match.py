@@ -188,6 +188,30 @@ def test_no_records_prove_nothing() -> None:
     assert not proves(points, match(points, records), everything(records)).any()
 
 
+def spread_rows(count: int, dimensions: int) -> ConditionsSet:
+    """Rows whose dimensions hold many different values each, so that few of their combinations are required."""
+    rng = np.random.default_rng(dimensions)
+    made = tuple(
+        Dimension(name=f"d{axis}", values=tuple(rng.permutation(count).tolist()), tolerance=0.6)
+        for axis in range(dimensions)
+    )
+    return ConditionsSet(id="SPREAD", dimensions=made, combination=Combination.LISTED)
+
+
+@pytest.mark.parametrize("dimensions", [2, 3, 5])
+def test_listed_rows_are_found_however_many_combinations_there_would_be(dimensions: int) -> None:
+    # 3000 values in 2, 3 or 5 dimensions: 9e6, 2.7e10 and 2.4e17 combinations, of which 3000 are required.
+    points = expand(spread_rows(3000, dimensions))
+    rng = np.random.default_rng(1)
+    asked = rng.permutation(3000)
+    records = points.columns_lo.take(asked)
+    shifted = {name: values + rng.uniform(-0.3, 0.3, 3000) for name, values in records.numeric.items()}
+    matching = match(points, Columns(3000, shifted, units=records.units))
+    assert matching.record[np.argsort(asked[matching.record])].tolist() == np.argsort(asked).tolist()
+    assert matching.point.tolist() == list(range(3000))
+    assert len(matching.ambiguous) == 0
+
+
 # A lattice of eighths: distances are exact in binary, so ties and tolerances are met exactly in both routes.
 eighths = st.integers(-40, 40).map(lambda number: number / 8)
 tolerances = st.sampled_from([0.0, 0.125, 0.25, 0.5, 1.0, 2.5])
