@@ -27,6 +27,7 @@ Flags = NDArray[np.bool_]
 _ROW = re.compile(rb"<row\b([^>]*)>")
 _ROW_NUMBER = re.compile(rb' r="([0-9]{1,7})"')
 _HIDDEN = re.compile(rb' hidden="(?:1|true)"')
+_METADATA = re.compile(rb'(?: (?:cm|vm|ph)="[0-9]+")+')
 _VALUE = re.compile(rb"<v[^>]*>([^<]*)</v>")
 
 _PADDING = b" " * 64
@@ -168,6 +169,7 @@ class _Cells:
 
     def _read_type(self) -> None:
         """What each cell says it holds; a cell without a type holds a number."""
+        self._skip_metadata()
         typed = self._stands(self._next, b' t="')
         letter = np.where(typed, self._bytes[self._next + 4], ord("n"))
         string = typed & self._stands(self._next + 4, b'str"')
@@ -176,11 +178,22 @@ class _Cells:
         self.shared = (letter == ord("s")) & ~string
         self.text = (letter == ord("s")) | (letter == ord("i"))
         self._next = self._next + np.where(typed, _TYPE_LENGTH[letter] + 2 * string, 0)
+        self._skip_metadata()
         closing = self._bytes[self._next]
         self.empty = closing == ord("/")
         if not (self.empty | (closing == ord(">"))).all():
             raise Irregular
         self._next += 1
+
+    def _skip_metadata(self) -> None:
+        """Cells of dynamic arrays and of rich values carry more attributes, before or after the type; they are few,
+        and taken one by one."""
+        more = (self._bytes[self._next] == ord(" ")) & ~self._stands(self._next, b' t="')
+        for place in np.flatnonzero(more).tolist():
+            metadata = _METADATA.match(self._block, int(self._next[place]))
+            if metadata is None:
+                raise Irregular
+            self._next[place] = metadata.end()
 
     def _read_value(self) -> None:
         """Which cells hold a formula and which a value, and where the tag of the value is."""

@@ -68,6 +68,8 @@ def _comment_rows(lines: list[str]) -> set[int]:
     if not first.startswith("%"):
         found = {number for number in found if not lines[number - 1].lstrip().startswith("%")}
     counted = {number for number in found if re.match(r"#[0-9]", lines[number - 1].lstrip())}
+    if not counted:
+        return found
     rows = sum(_is_data(line) for number, line in enumerate(lines, start=1) if number not in found)
     return found - counted if len(counted) > rows else found  # "#12", "#13" are names in the first column
 

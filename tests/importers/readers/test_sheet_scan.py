@@ -24,6 +24,7 @@ BODIES = [
     "<f/>", '<f t="shared" si="0"/><v>3</v>', "<f>A1</f><v></v>", "<f>A1</f><v/>", "<is><t>x</t></is>",
     '<is><r><rPr><color rgb="FF"/></rPr><t>x</t></r></is>', '<v xml:space="preserve"> </v>', "<f></f><v>7</v>",
 ]  # fmt: skip
+EXTRAS = ["", "", "", ' cm="1"', ' cm="1" vm="12"']
 TYPES = ["", ' t="n"', ' t="s"', ' t="str"', ' t="inlineStr"', ' t="b"', ' t="e"', ' t="d"']
 
 
@@ -45,7 +46,9 @@ class Row:
 cells = st.tuples(
     st.integers(1, 16_384),
     st.sampled_from(["", *(f' s="{style}"' for style in range(6))]),
-    st.sampled_from(TYPES),
+    st.tuples(st.sampled_from(EXTRAS), st.sampled_from(TYPES), st.sampled_from(EXTRAS)).map(
+        lambda parts: parts[0] + parts[1] + ("" if parts[0] else parts[2])
+    ),
     st.sampled_from(BODIES),
 )
 rows = st.builds(
@@ -99,7 +102,7 @@ def test_both_ways_see_the_same(table: list[Row], size: int, never_calculated: b
         '<row r="1"/><row><c/><c t="e"><v>#N/A</v></c></row>',
         '<row r="2"><c\n r="B2" t="e"><v>#N/A</v></c></row>',
         '<row r="2"><c r="B2" t = "e" ><v>#N/A</v></c></row>',
-        '<row r="2"><c r="B2" cm="1" t="e"><v>#N/A</v></c></row>',
+        '<row r="2"><c r="B2" new="1" t="e"><v>#N/A</v></c></row>',
         '<row r="2"><c r="B2" t="e" s="1"><v>#N/A</v></c></row>',
         '<row r="2"><c r="B2" t="e">\n<v>#N/A</v>\n</c></row>',
         '<row r="2"><!-- <c r="A1"> --><c r="B2" t="e"><v>#N/A</v></c></row>',
@@ -114,6 +117,12 @@ def test_unusual_writing_is_read_as_events(rows: str) -> None:
     assert [(run.column, run.first, run.cell) for run in scanned(rows).odd] == [
         (2, 2, OddCell(OddKind.ERROR, "#N/A"))
     ]
+
+
+def test_cells_of_dynamic_arrays_are_read_fast() -> None:
+    rows = '<row r="1"><c r="A1" s="1" cm="1"><f t="array" ref="A1">x</f><v>1</v></c><c r="B1" t="e" vm="1"/></row>'
+    marks = sheet_scan._scan_regular(iter([worksheet(rows)]), STYLES).odd
+    assert [run.cell.kind for run in marks] == [OddKind.PERCENT, OddKind.ERROR]
 
 
 def test_prefixed_names_are_read() -> None:
