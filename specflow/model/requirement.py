@@ -54,13 +54,17 @@ class DecisionRule(Document):
     """How a reading becomes a verdict.
 
     The guard band is ``w = guard_factor · U`` with U at k = 2. ``greatest_uncertainty`` is a ceiling on U (k = 2):
-    above it evidence is not admissible, or, with ``excess_tightens``, the excess is taken off the limit.
+    above it evidence is not admissible, or, with ``excess_tightens``, the excess is taken off the limit. ``comparison``
+    chooses the absolute or the rounding method of ASTM E29. Under the four-way rule ``conditional_pass_counts`` says
+    whether a reading inside the guard band proves its point.
     """
 
     name: RuleName = RuleName.SIMPLE
     guard_factor: float = Field(default=1.0, ge=0)
     greatest_uncertainty: float | None = Field(default=None, gt=0)
     excess_tightens: bool = False
+    comparison: Literal["absolute", "rounded"] = "absolute"
+    conditional_pass_counts: bool = True
 
 
 class Provers(Document):

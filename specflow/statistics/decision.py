@@ -23,10 +23,11 @@ COVERAGE_FACTOR = 2.0
 
 
 @dataclass(frozen=True, slots=True)
-class Bounds:
-    """The two sides a reading is held against; None is no bound, strict excludes equality.
+class AcceptanceInterval:
+    """The two sides a reading is held against: the limits, moved by guard band or test tolerance; None is no bound.
 
-    ``slack`` is how far a value may lie beyond a bound and still be equal to it (values that were converted).
+    Strict sides exclude equality. ``slack`` is how far from a bound a value may lie and still be equal to it (values
+    that were converted).
     """
 
     lower: Floats | None = None
@@ -35,9 +36,9 @@ class Bounds:
     upper_strict: Flags = False
     slack: Floats = 0.0
 
-    def inward(self, shift: Floats) -> Bounds:
+    def inward(self, shift: Floats) -> AcceptanceInterval:
         """Return the bounds moved inwards by ``shift`` (a guard band), or outwards where it is negative."""
-        return Bounds(
+        return AcceptanceInterval(
             None if self.lower is None else self.lower + shift,
             None if self.upper is None else self.upper - shift,
             self.lower_strict,
@@ -45,7 +46,7 @@ class Bounds:
             self.slack,
         )
 
-    def relaxed(self, test_tolerance: Floats) -> Bounds:
+    def relaxed(self, test_tolerance: Floats) -> AcceptanceInterval:
         """Return the test limits: the core limits relaxed by a test tolerance.
 
         Lower limits go down and upper limits go up; the reading is never touched (3GPP TS 38.141-2 clause 4.1 in
@@ -93,7 +94,7 @@ def decide(
     rule: RuleName,
     low: NDArray[np.float64],
     high: NDArray[np.float64],
-    bounds: Bounds,
+    bounds: AcceptanceInterval,
     guard: Floats = 0.0,
 ) -> NDArray[np.int8]:
     """Return the verdict (codes of ``Verdict``) of each reading [low, high] under a decision rule.
@@ -115,7 +116,9 @@ def decide(
     return verdicts
 
 
-def _binary(low: NDArray[np.float64], high: NDArray[np.float64], bounds: Bounds) -> NDArray[np.int8]:
+def _binary(
+    low: NDArray[np.float64], high: NDArray[np.float64], bounds: AcceptanceInterval
+) -> NDArray[np.int8]:
     verdicts = np.full(low.shape, Verdict.INCONCLUSIVE, np.int8)
     verdicts[bounds.missed(low, high)] = Verdict.FAIL
     verdicts[bounds.met(low, high)] = Verdict.PASS
@@ -123,7 +126,7 @@ def _binary(low: NDArray[np.float64], high: NDArray[np.float64], bounds: Bounds)
 
 
 def _four_way(
-    low: NDArray[np.float64], high: NDArray[np.float64], bounds: Bounds, guard: Floats
+    low: NDArray[np.float64], high: NDArray[np.float64], bounds: AcceptanceInterval, guard: Floats
 ) -> NDArray[np.int8]:
     verdicts = np.full(low.shape, Verdict.INCONCLUSIVE, np.int8)
     verdicts[bounds.missed(low, high)] = Verdict.CONDITIONAL_FAIL
@@ -134,15 +137,15 @@ def _four_way(
 
 
 def _beyond_doubt(
-    low: NDArray[np.float64], high: NDArray[np.float64], bounds: Bounds, guard: Floats
+    low: NDArray[np.float64], high: NDArray[np.float64], bounds: AcceptanceInterval, guard: Floats
 ) -> NDArray[np.bool_]:
     """Return where the reading lies outside by more than the guard band: a proven violation."""
     outer = bounds.inward(-np.asarray(guard))
-    return Bounds(outer.lower, outer.upper, False, False, bounds.slack).missed(low, high)
+    return AcceptanceInterval(outer.lower, outer.upper, False, False, bounds.slack).missed(low, high)
 
 
 def _no_room(
-    low: NDArray[np.float64], high: NDArray[np.float64], bounds: Bounds, guard: Floats
+    low: NDArray[np.float64], high: NDArray[np.float64], bounds: AcceptanceInterval, guard: Floats
 ) -> NDArray[np.bool_]:
     """Return where no reading could pass (w above half the tolerance), unless the violation is proven."""
     room = np.asarray(bounds.inward(guard).leave_room)
@@ -171,7 +174,9 @@ def excess(standard_uncertainty: Floats, greatest: float) -> Floats:
     return np.maximum(0.0, COVERAGE_FACTOR * standard_uncertainty - greatest)
 
 
-def margins(low: NDArray[np.float64], high: NDArray[np.float64], bounds: Bounds) -> NDArray[np.float64]:
+def margins(
+    low: NDArray[np.float64], high: NDArray[np.float64], bounds: AcceptanceInterval
+) -> NDArray[np.float64]:
     """Return the distance to the bounds: positive is good, the smaller side of two; the worse end of the reading.
 
     An open end has no distance: there the other end is taken ("at least" for a pass, "at most" for a fail).

@@ -28,7 +28,7 @@ Answer = Mapping[str, Any]
 
 def _zone(rule: RuleName, reading: float, limit: float, guard: float) -> str:
     point = np.array([reading])
-    verdict = decision.decide(rule, point, point, decision.Bounds(upper=limit), guard)[0]
+    verdict = decision.decide(rule, point, point, decision.AcceptanceInterval(upper=limit), guard)[0]
     return Verdict(verdict).name.lower()
 
 
@@ -55,16 +55,16 @@ def _from_expanded(i: Answer) -> Answer:
 
 def _acceptance_upper(i: Answer) -> Answer:
     w = decision.guard_factor_for_probability(i["p_c_min"]) * i["u"]
-    return {"w": w, "A_U": decision.Bounds(upper=i["T_U"]).inward(w).upper}
+    return {"w": w, "A_U": decision.AcceptanceInterval(upper=i["T_U"]).inward(w).upper}
 
 
 def _acceptance_lower(i: Answer) -> Answer:
     w = decision.guard_factor_for_probability(i["p_c_min"]) * i["u"]
-    return {"w": w, "A_L": decision.Bounds(lower=i["T_L"]).inward(w).lower}
+    return {"w": w, "A_L": decision.AcceptanceInterval(lower=i["T_L"]).inward(w).lower}
 
 
 def _empty_interval(i: Answer) -> Answer:
-    bounds = decision.Bounds(i["T_L"], i["T_U"])
+    bounds = decision.AcceptanceInterval(i["T_L"], i["T_U"])
     centre = np.array([(i["T_L"] + i["T_U"]) / 2])
     for rule in (RuleName.GUARDED, RuleName.FOUR_WAY):
         assert decision.decide(rule, centre, centre, bounds, i["w"])[0] == Verdict.UNDECIDABLE
@@ -83,13 +83,13 @@ def _zones(i: Answer) -> Answer:
 
 
 def _test_requirement(i: Answer) -> Answer:
-    core = decision.Bounds(upper=float(i["minimum_requirement_max_dBm"]))
+    core = decision.AcceptanceInterval(upper=float(i["minimum_requirement_max_dBm"]))
     return {"test_requirement_dBm": core.relaxed(i["test_tolerance_dB"]).upper}
 
 
 def _shared_risk(i: Answer) -> Answer:
     u = i["U95_k1.96_dB"] / 1.96
-    test_limit = decision.Bounds(upper=float(i["core_limit_max_dBm"])).relaxed(i["TT_dB"]).upper
+    test_limit = decision.AcceptanceInterval(upper=float(i["core_limit_max_dBm"])).relaxed(i["TT_dB"]).upper
     assert test_limit is not None
     return {
         "P_pass_if_true_value_at_core_limit": decision.conformance_probability(
@@ -108,14 +108,14 @@ def _ceiling(i: Answer) -> Answer:
 
 def _excess(i: Answer) -> Answer:
     taken = decision.excess(i["U_lab_dB"] / 2, i["U_max_dB"])
-    return {"limit_effective": decision.Bounds(upper=i["limit_max"]).inward(taken).upper}
+    return {"limit_effective": decision.AcceptanceInterval(upper=i["limit_max"]).inward(taken).upper}
 
 
 def _cispr(i: Answer) -> Answer:
     taken = decision.excess(i["U_lab"] / 2, i["U_cispr"])
     reading = np.array([i["measured"]])
     verdict = decision.decide(
-        RuleName.SIMPLE, reading, reading, decision.Bounds(upper=i["limit_max"]).inward(taken)
+        RuleName.SIMPLE, reading, reading, decision.AcceptanceInterval(upper=i["limit_max"]).inward(taken)
     )
     return {"adjusted": i["measured"] + taken, "pass": bool(verdict[0] == Verdict.PASS)}
 

@@ -1,0 +1,74 @@
+"""The one label of a row, and close-out with its reason. The first label that applies, in one order, is shown."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+
+from specflow.model.verdict import CloseOut, Compliance, Label, Verdict
+from specflow.verification.compliance import Facts, compliance
+
+
+def _waived(facts: Facts) -> bool:
+    return facts.fails and facts.waiving.all_covered
+
+
+def _ready(facts: Facts) -> bool:
+    return compliance(facts) is Compliance.COMPLIANT
+
+
+#: When each label applies. The order is that of ``Label``: the first that applies is shown.
+_APPLIES: dict[Label, Callable[[Facts], bool]] = {
+    Label.NOT_APPLICABLE: lambda facts: not facts.applicable,
+    Label.WAIVER_EXCEEDED: lambda facts: facts.fails and bool(facts.waiving.exceeded),
+    Label.FAILING: lambda facts: compliance(facts) is Compliance.NON_COMPLIANT and not _waived(facts),
+    Label.PARTIALLY_COMPLIANT: lambda facts: (
+        compliance(facts) is Compliance.PARTIALLY_COMPLIANT and not _waived(facts)
+    ),
+    Label.CONFLICTING: lambda facts: facts.conflicting,
+    Label.REVERIFY: lambda facts: facts.stale,
+    Label.TBD: lambda facts: facts.to_be_defined,
+    Label.UNALLOCATED: lambda facts: facts.unallocated,
+    Label.NOT_PLANNED: lambda facts: not facts.counted and not facts.planned,
+    Label.PLANNED: lambda facts: not facts.counted,
+    Label.UNDECIDABLE: lambda facts: Verdict.UNDECIDABLE in facts.verdicts,
+    Label.INSUFFICIENT: lambda facts: Verdict.INSUFFICIENT in facts.verdicts,
+    Label.PARTIALLY_VERIFIED: lambda facts: Verdict.NONE in facts.verdicts,
+    Label.INCONCLUSIVE: lambda facts: Verdict.INCONCLUSIVE in facts.verdicts,
+    Label.MARGINAL: lambda facts: facts.marginal,
+    Label.TBR: lambda facts: facts.to_be_reviewed,
+    Label.READY: lambda facts: _ready(facts) and not facts.approved,
+    Label.CLOSED_WAIVED: _waived,
+    Label.CLOSED_VERIFIED: lambda facts: _ready(facts) and facts.approved,
+}
+
+
+def label(facts: Facts) -> Label:
+    """Return the label of a requirement."""
+    return next((one for one in Label if _APPLIES[one](facts)), Label.INCONCLUSIVE)
+
+
+def close_out(facts: Facts) -> tuple[CloseOut, str]:
+    """Return open or closed, and the reason in words. A marginal result is shown, and does not keep a row open."""
+    reason = next(
+        (one for one in Label if one is not Label.MARGINAL and _APPLIES[one](facts)), Label.INCONCLUSIVE
+    )
+    if reason is Label.NOT_APPLICABLE:
+        return CloseOut.CLOSED, f"not applicable: {facts.not_applicable_reason}"
+    if reason is Label.CLOSED_WAIVED:
+        return CloseOut.CLOSED, f"waived by {', '.join(facts.waiving.covering)}"
+    if reason is Label.CLOSED_VERIFIED and not facts.nonconformances:
+        return CloseOut.CLOSED, "verified"
+    return CloseOut.OPEN, _open_reason(facts, reason)
+
+
+def _open_reason(facts: Facts, reason: Label) -> str:
+    parts = [reason.value]
+    if reason is Label.CLOSED_VERIFIED:
+        parts = []
+    if reason is Label.WAIVER_EXCEEDED:
+        parts = list(facts.waiving.exceeded)
+    if facts.nonconformances:
+        parts.append(f"{', '.join(facts.nonconformances)} open")
+    if facts.fails and facts.waiving.requested:
+        parts.append(f"waiver requested ({', '.join(facts.waiving.requested)})")
+    return "; ".join(parts)

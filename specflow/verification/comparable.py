@@ -1,0 +1,242 @@
+"""May values of one recorded quantity be held against a limit on another? Only like compares with like.
+
+Plane, statistic, bandwidth and polarisation must be the same. Two differences can be bridged, and it is said: a
+declared path between planes, and another reference bandwidth where the spectrum is noise-like (it scales) or a
+discrete line (it does not); of an unknown spectrum the reading is only known to lie between the two.
+"""
+
+from __future__ import annotations
+
+import math
+from collections import deque
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.errors import UnitError
+from specflow.model.block import Block
+from specflow.model.evidence import EvidenceTable, SpectrumKind, ValueArrays, ValueColumn
+from specflow.model.parameter import Parameter, QuantityIdentity
+from specflow.model.verdict import Mismatch
+from specflow.units import Converter, Kind, Unit, converter, missing_between_planes, parse_unit
+
+Floats = NDArray[np.float64]
+
+_WITHOUT_BANDWIDTH = {
+    Kind.LEVEL_DENSITY: Kind.LEVEL,
+    Kind.FIELD_DENSITY: Kind.FIELD_LEVEL,
+    Kind.POWER_FLUX_DENSITY: Kind.POWER_FLUX,
+    Kind.RATIO_DENSITY: Kind.RATIO,
+}
+_SCALES_WITH_BANDWIDTH = frozenset({*_WITHOUT_BANDWIDTH, *_WITHOUT_BANDWIDTH.values()})
+_MOVES_WITH_GAIN = frozenset({Kind.LEVEL, Kind.LEVEL_DENSITY})
+
+
+@dataclass(frozen=True, slots=True)
+class Fit:
+    """How recorded values become values of the required quantity, in the unit of the limit.
+
+    ``least_db`` and ``most_db`` are added to the low and the high end (dB); they differ where the spectrum is unknown.
+    ``u_db`` is the standard uncertainty of a path between planes. ``exact`` means compared as written.
+    """
+
+    convert: Converter
+    least_db: float = 0.0
+    most_db: float = 0.0
+    u_db: float = 0.0
+    notes: tuple[str, ...] = ()
+
+    @property
+    def exact(self) -> bool:
+        """Whether nothing at all was done to the values."""
+        return self.convert.is_identity and not (self.least_db or self.most_db)
+
+    def apply(self, arrays: ValueArrays) -> ValueArrays:
+        """Return the values in the unit of the limit; UnitError for a value that has none (log of a negative)."""
+        if self.exact and not self.u_db:
+            return arrays
+        low = self.convert(arrays.low)
+        high = low if arrays.high is arrays.low else self.convert(arrays.high)
+        u = None if arrays.u is None else self._spread(arrays)
+        if self.u_db:
+            u = np.full(low.shape, self.u_db) if u is None else np.hypot(u, self.u_db)
+        if self.least_db == self.most_db:
+            moved = low + self.least_db
+            return ValueArrays(moved, moved if high is low else high + self.most_db, u)
+        return ValueArrays(low + self.least_db, high + self.most_db, u)
+
+    def _spread(self, arrays: ValueArrays) -> Floats:
+        """Return u in the unit of the limit: how far the value moves when it moves by u, the larger side."""
+        assert arrays.u is not None
+        if self.convert.is_identity:
+            return arrays.u
+        middle = np.where(np.isfinite(arrays.high), arrays.high, arrays.low)
+        centre = self.convert(middle)
+        if self.convert.source.is_log == self.convert.target.is_log:
+            return np.abs(self.convert(middle + arrays.u) - centre)
+        up = np.abs(self.convert(middle + arrays.u) - centre)
+        below = middle - arrays.u
+        down = (
+            np.abs(centre - self.convert(np.where(below > 0, below, middle)))
+            if self.convert.target.is_log
+            else 0.0
+        )
+        return np.maximum(up, down)
+
+
+def fit(
+    table: EvidenceTable,
+    column: ValueColumn,
+    wanted: QuantityIdentity,
+    unit: str,
+    block: Block | None,
+    parameter: Parameter | None,
+) -> Fit | Mismatch:
+    """Return how the values of a column are compared with a limit on ``wanted`` in ``unit``, or why they may not be."""
+    found = column.quantity
+    for part in ("statistic", "polarisation"):
+        if _plain(getattr(found, part)) != _plain(getattr(wanted, part)):
+            return _differs(table, column, part, getattr(found, part), getattr(wanted, part))
+    try:
+        source, target = parse_unit(column.unit or "1"), parse_unit(unit or "1")
+        convert = _conversion(source, target, parameter)
+    except UnitError as error:
+        what = f"recorded in {column.unit or 'no unit'}, the limit is in {unit}: {error.message}"
+        return _mismatch(
+            table, column, "unit", what, error.hint or "correct the unit in the mapping of the table"
+        )
+    moved = _between_planes(table, column, wanted, block, target)
+    if isinstance(moved, Mismatch):
+        return moved
+    scaled = _between_bandwidths(table, column, wanted, source, target)
+    if isinstance(scaled, Mismatch):
+        return scaled
+    notes = () if convert.is_identity else (convert.words,)
+    return Fit(
+        convert,
+        moved.least_db + scaled.least_db,
+        moved.most_db + scaled.most_db,
+        moved.u_db,
+        (*notes, *moved.notes, *scaled.notes),
+    )
+
+
+@dataclass(frozen=True, slots=True)
+class Shift:
+    """A number of dB between two planes or bandwidths, known or bounded."""
+
+    least_db: float = 0.0
+    most_db: float = 0.0
+    u_db: float = 0.0
+    notes: tuple[str, ...] = ()
+
+
+def _conversion(source: Unit, target: Unit, parameter: Parameter | None) -> Converter:
+    """Return the conversion of the bare level: reference bandwidths are dealt with apart."""
+    factor = parameter.log_factor if parameter is not None else None
+    return converter(_bare(source), _bare(target), log_factor=factor)
+
+
+def _bare(unit: Unit) -> Unit:
+    kind = _WITHOUT_BANDWIDTH.get(unit.kind)
+    return unit if kind is None else replace(unit, kind=kind, bandwidth_hz=None)
+
+
+def _plain(part: str) -> str:
+    return part.strip().casefold()
+
+
+def _between_planes(
+    table: EvidenceTable, column: ValueColumn, wanted: QuantityIdentity, block: Block | None, target: Unit
+) -> Shift | Mismatch:
+    here, there = column.quantity.plane, wanted.plane
+    if _plain(here) == _plain(there):
+        return Shift()
+    if not here or not there:
+        return _differs(table, column, "plane", here, there)
+    path = _path(block, here, there) if block is not None else None
+    if path is None:
+        what = f"referred to {here}, required at {there}"
+        return _mismatch(table, column, "plane", what, missing_between_planes(here, there))
+    if target.kind not in _MOVES_WITH_GAIN or not target.is_log:
+        what = f"referred to {here}, required at {there}; a value in {target} does not move with a gain"
+        return _mismatch(table, column, "plane", what, f"measure it at {there}")
+    gain, u = path
+    note = f"{here} to {there}: {gain:+g} dB by declared path, u = {u:g} dB"
+    return Shift(gain, gain, u, (note,))
+
+
+def _path(block: Block, here: str, there: str) -> tuple[float, float] | None:
+    """Return gain and u of the shortest chain of declared paths; against its direction a path has the opposite gain."""
+    steps: dict[str, list[tuple[str, float, float]]] = {}
+    for path in block.paths:
+        start, end = _plain(path.start), _plain(path.end)
+        steps.setdefault(start, []).append((end, path.gain_db, path.standard_uncertainty_db))
+        steps.setdefault(end, []).append((start, -path.gain_db, path.standard_uncertainty_db))
+    reached = {_plain(here): (0.0, 0.0)}
+    queue = deque(reached)
+    while queue:
+        plane = queue.popleft()
+        gain, u = reached[plane]
+        for end, step, step_u in steps.get(plane, ()):
+            if end not in reached:
+                reached[end] = (gain + step, math.hypot(u, step_u))
+                queue.append(end)
+    return reached.get(_plain(there))
+
+
+def _between_bandwidths(
+    table: EvidenceTable, column: ValueColumn, wanted: QuantityIdentity, source: Unit, target: Unit
+) -> Shift | Mismatch:
+    here = source.bandwidth_hz or column.quantity.bandwidth_hz
+    there = target.bandwidth_hz or wanted.bandwidth_hz
+    if here == there:
+        return Shift()
+    if here is None or there is None:
+        return _differs(table, column, "reference bandwidth", _hertz(here), _hertz(there))
+    if target.kind not in _SCALES_WITH_BANDWIDTH:
+        return _differs(table, column, "reference bandwidth", _hertz(here), _hertz(there))
+    if not target.is_log:
+        what = f"measured in {_hertz(here)}, required in {_hertz(there)}, and the limit is not in dB"
+        return _mismatch(
+            table, column, "bandwidth", what, "write the limit in dB, or measure in its bandwidth"
+        )
+    return _scaled(column.spectrum, here, there)
+
+
+def _scaled(spectrum: SpectrumKind, here: float, there: float) -> Shift:
+    noise = 10 * math.log10(there / here)
+    step = f"{_hertz(here)} to {_hertz(there)}"
+    if spectrum is SpectrumKind.NOISE_LIKE:
+        return Shift(noise, noise, notes=(f"noise-like, {step}: {noise:+.4g} dB",))
+    if spectrum is SpectrumKind.DISCRETE:
+        return Shift(notes=(f"a discrete line does not scale with bandwidth ({step})",))
+    low, high = min(0.0, noise), max(0.0, noise)
+    note = f"{step}: noise-like or discrete is not said, so only {low:+.4g} to {high:+.4g} dB is known"
+    return Shift(low, high, notes=(note,))
+
+
+def _hertz(value: float | None) -> str:
+    if value is None:
+        return ""
+    for size, symbol in ((1e9, "GHz"), (1e6, "MHz"), (1e3, "kHz")):
+        if value >= size:
+            return f"{value / size:g} {symbol}"
+    return f"{value:g} Hz"
+
+
+def _differs(table: EvidenceTable, column: ValueColumn, part: str, found: str, wanted: str) -> Mismatch:
+    kind = part.split()[-1]
+    if not found:
+        what = f"the {part} is not stated, required is {wanted}"
+        return _mismatch(table, column, kind, what, f"state the {part} in the mapping of the table")
+    if not wanted:
+        what = f"the {part} is {found}, the requirement states none"
+        return _mismatch(table, column, kind, what, f"state the {part} in the requirement")
+    what = f"the {part} is {found}, required is {wanted}"
+    return _mismatch(table, column, kind, what, f"record the quantity with {part} {wanted}")
+
+
+def _mismatch(table: EvidenceTable, column: ValueColumn, kind: str, what: str, remedy: str) -> Mismatch:
+    return Mismatch(table.id, column.name, table.rows, what, remedy, kind)

@@ -1,0 +1,52 @@
+"""Compliance: does what was built meet the limit? From what counts, never from what is missing.
+
+Non-compliant: at least one governing verdict is a fail. Partially compliant: the same, where people declared the
+split. Compliant: every required activity has all its points proved. A waiver changes nothing here.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from specflow.model.verdict import Compliance, Verdict
+from specflow.verification.waiving import NO_WAIVER, Waiving
+
+
+@dataclass(frozen=True, slots=True)
+class Facts:
+    """What the axes, the label and the close-out of a requirement are derived from."""
+
+    applicable: bool = True
+    to_be_defined: bool = False
+    to_be_reviewed: bool = False
+    unallocated: bool = False
+    planned: bool = True
+    counted: bool = False
+    complete: bool = False
+    verdicts: frozenset[Verdict] = frozenset({Verdict.NONE})
+    some_proved: bool = False
+    split_declared: bool = False
+    conflicting: bool = False
+    stale: bool = False
+    marginal: bool = False
+    waiving: Waiving = NO_WAIVER
+    approved: bool = False
+    nonconformances: tuple[str, ...] = ()
+    not_applicable_reason: str = ""
+
+    @property
+    def fails(self) -> bool:
+        """Whether any governing verdict is a fail, conditional or not."""
+        return bool(self.verdicts & {Verdict.FAIL, Verdict.CONDITIONAL_FAIL})
+
+
+def compliance(facts: Facts) -> Compliance:
+    """Return the compliance that the facts come to."""
+    if not facts.applicable:
+        return Compliance.NOT_APPLICABLE
+    if facts.to_be_defined:
+        return Compliance.NOT_DETERMINED
+    if facts.fails:
+        split = facts.split_declared and facts.some_proved
+        return Compliance.PARTIALLY_COMPLIANT if split else Compliance.NON_COMPLIANT
+    return Compliance.COMPLIANT if facts.complete else Compliance.NOT_DETERMINED

@@ -1,0 +1,167 @@
+"""Credit: which reading may prove a point of one activity, and which outranks which.
+
+Rank at one point of one item, highest first (process rule 5): test on a representative item, test on a less
+representative one, analysis with a validated model, other analysis, similarity, estimate. What is proved by a higher
+rank is proved: a test serves an analysis activity, an analysis never closes a test activity. A reading without credit
+shows progress when it passes; when it fails it stays an open fail unless something of higher rank stands at the point.
+
+Stages: evidence proves activities of its own stage (the default activity, which nobody planned, takes any). A fail at
+a later stage keeps its weight; one at an earlier stage counts like one on less representative hardware.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.model.base import code_key
+from specflow.model.block import HardwareType
+from specflow.model.evidence import EvidenceTable
+from specflow.model.requirement import Activity, Method, Provers, Stage
+from specflow.verification.readings import Readings
+from specflow.verification.records import Records, Source
+from specflow.verification.standing import ACCEPTED, STALE
+from specflow.verification.workspace import Workspace
+
+Codes = NDArray[np.int8]
+Flags = NDArray[np.bool_]
+
+REPRESENTATIVE, LESS_REPRESENTATIVE, VALIDATED, REASONED, SIMILAR, ESTIMATE = 6, 5, 3, 2, 1, 0
+
+_SERVES: dict[Method, frozenset[Method]] = {
+    Method.TEST: frozenset({Method.TEST}),
+    Method.DEMONSTRATION: frozenset({Method.DEMONSTRATION, Method.TEST}),
+    Method.INSPECTION: frozenset({Method.INSPECTION}),
+    Method.REVIEW_OF_DESIGN: frozenset({Method.REVIEW_OF_DESIGN, Method.ANALYSIS, Method.TEST}),
+    Method.ANALYSIS: frozenset({Method.ANALYSIS, Method.TEST}),
+    Method.SIMILARITY: frozenset({Method.SIMILARITY, Method.ANALYSIS, Method.TEST}),
+}
+_OBSERVED = frozenset({Method.TEST, Method.DEMONSTRATION, Method.INSPECTION})
+_HARDWARE = tuple(HardwareType)
+_STAGES = tuple(Stage)
+
+
+@dataclass(frozen=True, slots=True)
+class Credit:
+    """For each pair of reading and point: ``rank`` int8, ``counts`` (may prove), ``stale`` (its subject changed).
+
+    ``why`` says what has no credit and for what reason.
+    """
+
+    rank: Codes
+    counts: Flags
+    stale: Flags
+    why: tuple[str, ...] = ()
+
+
+def is_of_design(source: Source) -> bool:
+    """Whether evidence is about the design and so holds for every item of the block."""
+    return source.table.method not in _OBSERVED
+
+
+def credit(
+    activity: Activity, provers: Provers, records: Records, readings: Readings, workspace: Workspace
+) -> Credit:
+    """Return rank and credit of every pair for one activity."""
+    shape = len(records.sources), len(records.items)
+    rank, counts, stale = np.zeros(shape, np.int8), np.zeros(shape, bool), np.zeros(shape, bool)
+    why: dict[str, None] = {}
+    named = _named(provers, workspace)
+    for i, source in enumerate(records.sources):
+        reason = _no_credit(activity, source, workspace)
+        outdated = _outdated(activity, source.table)
+        for j, item in enumerate(records.items):
+            own = reason or _item_reason(activity, source, item, named, workspace)
+            rank[i, j] = _rank(activity, source, item, workspace)
+            counts[i, j] = not own and not outdated
+            stale[i, j] = bool(outdated)
+            why.update(dict.fromkeys(text for text in (own, outdated) if text))
+    return _spread(records, readings, rank, counts, stale, tuple(why))
+
+
+def _spread(
+    records: Records, readings: Readings, rank: Codes, counts: Flags, stale: Flags, why: tuple[str, ...]
+) -> Credit:
+    size = readings.size
+    if rank.size == 1 and records.all_accepted:
+        one = rank[0, 0], counts[0, 0], stale[0, 0]
+        return Credit(np.full(size, one[0]), np.full(size, one[1]), np.full(size, one[2]), why)
+    source, item = records.source[readings.record], records.item[readings.record]
+    standing = records.standing[readings.record]
+    return Credit(
+        rank[source, item],
+        counts[source, item] & (standing == ACCEPTED),
+        stale[source, item] | (standing == STALE),
+        (*why, *records.reasons),
+    )
+
+
+def _named(provers: Provers, workspace: Workspace) -> frozenset[str]:
+    return frozenset(code_key(getattr(workspace.item(name), "id", name)) for name in provers.items)
+
+
+def _no_credit(activity: Activity, source: Source, workspace: Workspace) -> str:
+    table = source.table
+    if table.method not in _SERVES[activity.method]:
+        return f"{table.id}: {_articled(table.method)} does not close {_articled(activity.method)}"
+    if code_key(table.file) in workspace.datasheets and activity.method is not Method.REVIEW_OF_DESIGN:
+        return f"{table.id}: a datasheet is no {activity.method.value} of this item"
+    if activity.planned and table.stage is not activity.stage:
+        return f"{table.id}: taken at the {table.stage.value} stage, planned is {activity.stage.value}"
+    return ""
+
+
+def _articled(method: Method) -> str:
+    return f"{'an' if method.value[0] in 'aeiou' else 'a'} {method.value}"
+
+
+def _item_reason(
+    activity: Activity, source: Source, item: str, named: frozenset[str], workspace: Workspace
+) -> str:
+    if is_of_design(source) and not item:
+        return ""
+    if named and code_key(item) not in named:
+        return (
+            f"item {item} is not one of those named to prove it"
+            if item
+            else "no item is named in the evidence"
+        )
+    if not _is_representative(activity, source, item, workspace):
+        kind = workspace.hardware_type(item).value
+        return f"item {item} is {kind} hardware, credit needs {activity.credit_from.value} or better"
+    return ""
+
+
+def _is_representative(activity: Activity, source: Source, item: str, workspace: Workspace) -> bool:
+    if source.table.method not in _OBSERVED:
+        return True
+    return _HARDWARE.index(workspace.hardware_type(item)) >= _HARDWARE.index(activity.credit_from)
+
+
+def _rank(activity: Activity, source: Source, item: str, workspace: Workspace) -> int:
+    table = source.table
+    if code_key(table.file) in workspace.datasheets:
+        return ESTIMATE
+    if table.method in _OBSERVED:
+        early = activity.planned and _STAGES.index(table.stage) < _STAGES.index(activity.stage)
+        fit = not early and _is_representative(activity, source, item, workspace)
+        return REPRESENTATIVE if fit else LESS_REPRESENTATIVE
+    if table.method is Method.SIMILARITY:
+        return SIMILAR
+    return VALIDATED if table.simulation_validated else REASONED
+
+
+def _outdated(activity: Activity, table: EvidenceTable) -> str:
+    """Say that the procedure the evidence followed is not the one the activity asks for now."""
+    if not (activity.procedure and activity.procedure_revision and table.procedure_revision):
+        return ""
+    if code_key(table.procedure) != code_key(activity.procedure):
+        return ""
+    if code_key(table.procedure_revision) == code_key(activity.procedure_revision):
+        return ""
+    return (
+        f"{table.id}: followed {table.procedure} revision {table.procedure_revision}, "
+        f"now {activity.procedure_revision} is asked for"
+    )

@@ -1,0 +1,67 @@
+"""What people decided, by the requirement it is about: waivers, splits, approvals, dispositions, nonconformances."""
+
+from __future__ import annotations
+
+from collections import defaultdict
+from collections.abc import Callable, Iterable, Mapping, Sequence
+from dataclasses import dataclass
+from datetime import date
+from typing import TypeVar
+
+from specflow.model.base import code_key
+from specflow.model.budget import Allocation
+from specflow.model.decision import Approval, DeclaredSplit, Disposition, Nonconformance, Waiver
+from specflow.model.snapshot import Snapshot
+
+D = TypeVar("D")
+
+
+@dataclass(frozen=True, slots=True)
+class Decisions:
+    """Decisions by requirement key; dispositions by subject key; ``allocated`` are keys of requirements handed down."""
+
+    waivers: Mapping[str, Sequence[Waiver]]
+    splits: Mapping[str, Sequence[DeclaredSplit]]
+    approvals: Mapping[str, Sequence[Approval]]
+    nonconformances: Mapping[str, Sequence[Nonconformance]]
+    dispositions: Mapping[str, Sequence[Disposition]]
+    allocated: frozenset[str]
+
+    @classmethod
+    def of(cls, snapshot: Snapshot) -> Decisions:
+        """Collect the decisions of a snapshot."""
+        return cls(
+            _by(snapshot.all(Waiver), lambda waiver: waiver.requirement),
+            _by(snapshot.all(DeclaredSplit), lambda split: split.requirement),
+            _by(snapshot.all(Approval), lambda approval: approval.requirement),
+            _by(snapshot.all(Nonconformance), lambda report: report.requirement),
+            _by(snapshot.all(Disposition), lambda disposition: disposition.subject),
+            frozenset(code_key(allocation.parent) for allocation in snapshot.all(Allocation)),
+        )
+
+    def latest_approval(self, requirement: str) -> Approval | None:
+        """Return the last decision of the board on a requirement."""
+        approvals = self.approvals.get(code_key(requirement), ())
+        return max(approvals, key=lambda approval: approval.on, default=None)
+
+    def open_nonconformances(self, requirement: str) -> tuple[str, ...]:
+        """Return the ids of open nonconformances against a requirement."""
+        reports = self.nonconformances.get(code_key(requirement), ())
+        return tuple(report.id for report in reports if report.state == "open")
+
+    def conflict_is_settled(self, requirement: str, as_of: date) -> bool:
+        """Whether somebody disposed of conflicting evidence of a requirement, and the decision still stands."""
+        return any(
+            "conflict" in disposition.rule.casefold()
+            and (disposition.expires_on is None or disposition.expires_on >= as_of)
+            for disposition in self.dispositions.get(code_key(requirement), ())
+        )
+
+
+def _by(documents: Iterable[D], subject: Callable[[D], str | None]) -> Mapping[str, Sequence[D]]:
+    found: dict[str, list[D]] = defaultdict(list)
+    for document in documents:
+        key = subject(document)
+        if key is not None:
+            found[code_key(key)].append(document)
+    return dict(found)

@@ -1,0 +1,88 @@
+"""Evaluate a snapshot: the status of every requirement, and which evidence serves none."""
+
+from __future__ import annotations
+
+from collections.abc import Collection, Iterable, Sequence
+from dataclasses import replace
+from datetime import date
+
+from specflow.model.base import code_key
+from specflow.model.requirement import Requirement
+from specflow.model.snapshot import Results, Snapshot
+from specflow.model.verdict import RequirementStatus
+from specflow.parameters import Dictionary
+from specflow.verification.decisions import Decisions
+from specflow.verification.lower_level import status_by_children
+from specflow.verification.status import status_of
+from specflow.verification.unmatched import misattributed, unmatched
+from specflow.verification.workspace import Workspace
+
+
+def evaluate(
+    snapshot: Snapshot, dictionary: Dictionary, *, as_of: date, only: Iterable[str] | None = None
+) -> Results:
+    """Judge all requirements of a snapshot as seen on ``as_of``, or ``only`` those of the given ids.
+
+    Never raises for what evidence or documents contain: what cannot be judged is said in the status.
+    """
+    workspace = Workspace(snapshot, dictionary, as_of)
+    decisions = Decisions.of(snapshot)
+    asked = None if only is None else {code_key(one) for one in only}
+    wanted = _wanted(snapshot, asked)
+    workspace.fetch(requirement for requirement in wanted if not requirement.met_by_lower_level)
+    statuses: dict[str, RequirementStatus] = {}
+    for requirement in wanted:
+        _compute(requirement, statuses, workspace, decisions, frozenset())
+    for key, mismatches in misattributed(snapshot).items():
+        if key in statuses:
+            found = statuses[key]
+            statuses[key] = replace(found, mismatches=(*found.mismatches, *mismatches))
+    if asked is not None:
+        return Results(as_of.isoformat(), {key: one for key, one in statuses.items() if key in asked})
+    return Results(as_of.isoformat(), statuses, unmatched(workspace))
+
+
+def _wanted(snapshot: Snapshot, asked: Collection[str] | None) -> Sequence[Requirement]:
+    """Return the requirements asked for and the children that some of them are met by."""
+    if asked is None:
+        return snapshot.requirements
+    wanted: dict[str, Requirement] = {}
+    queue = [one for key in asked if (one := snapshot.find(Requirement, key)) is not None]
+    while queue:
+        requirement = queue.pop()
+        if code_key(requirement.id) in wanted:
+            continue
+        wanted[code_key(requirement.id)] = requirement
+        if requirement.met_by_lower_level:
+            queue.extend(_children(requirement, snapshot))
+    return tuple(wanted.values())
+
+
+def _children(requirement: Requirement, snapshot: Snapshot) -> Sequence[Requirement]:
+    return snapshot.children_of.get(code_key(requirement.id), ())
+
+
+def _compute(
+    requirement: Requirement,
+    statuses: dict[str, RequirementStatus],
+    workspace: Workspace,
+    decisions: Decisions,
+    above: frozenset[str],
+) -> RequirementStatus:
+    """Compute a status once, children first where they decide; one that is its own descendant is left out there."""
+    key = code_key(requirement.id)
+    found = statuses.get(key)
+    if found is not None:
+        return found
+    if not requirement.met_by_lower_level:
+        status = status_of(requirement, workspace, decisions)
+    else:
+        path = above | {key}
+        children = [
+            _compute(child, statuses, workspace, decisions, path)
+            for child in _children(requirement, workspace.snapshot)
+            if code_key(child.id) not in path
+        ]
+        status = status_by_children(requirement, children, workspace, decisions)
+    statuses[key] = status
+    return status

@@ -1,0 +1,313 @@
+"""Readings judged: every reading that serves a required point, held against the limit at that point.
+
+A limit that depends on conditions is evaluated at the conditions that the point requires; what the conditions set
+does not name (the axis of a mask, the actual frequency along a range) is taken from the record.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.conditions.match import Matching
+from specflow.conditions.points import Points
+from specflow.limits.bounds import Bounds, LimitContext
+from specflow.limits.evaluation import evaluate_limit
+from specflow.limits.tree import tree_names
+from specflow.model.columns import Columns, TextColumn
+from specflow.model.expression import Negative, Number
+from specflow.model.limit import Between, Bound, Limit
+from specflow.model.project import Policy
+from specflow.model.requirement import DecisionRule, RuleName
+from specflow.model.verdict import Verdict
+from specflow.statistics.decision import (
+    AcceptanceInterval,
+    Floats,
+    admissible,
+    decide,
+    excess,
+    guard_band,
+    margins,
+)
+from specflow.statistics.rounding import digit_of, rounded
+from specflow.units import Unit, closeness, converter, parse_unit, tolerance_unit
+from specflow.verification.bandwidths import in_bandwidth_of_limit
+from specflow.verification.records import Records
+
+Array = NDArray[np.float64]
+Rows = NDArray[np.int32]
+Codes = NDArray[np.int8]
+
+
+@dataclass(frozen=True, slots=True)
+class Readings:
+    """Pairs (p,): reading ``record[i]`` serves ``point[i]``; sorted by point.
+
+    ``low``, ``high`` as read and ``lower``, ``upper`` (the core limit, NaN where a side has no bound) are in the unit
+    of the limit; ``u``, ``margin`` and ``guarded`` in its tolerance unit, NaN where there is none. ``margin`` is the
+    distance to the core limit; ``guarded`` that to the acceptance limit (guard band, test tolerance, excess
+    uncertainty). ``marginal``: a pass or fail nearer to the limit than U, or than the threshold of the project without
+    one. ``why`` are sentences about what could not be decided.
+    """
+
+    record: Rows
+    point: Rows
+    low: Array
+    high: Array
+    u: Array
+    lower: Array
+    upper: Array
+    verdict: Codes
+    margin: Array
+    guarded: Array
+    marginal: NDArray[np.bool_]
+    why: tuple[str, ...] = ()
+
+    @property
+    def size(self) -> int:
+        """How many pairs there are."""
+        return len(self.record)
+
+
+@dataclass(frozen=True, slots=True)
+class Judgement:
+    """What readings are held against: the limit, the rule, the house's thresholds, the declared values."""
+
+    limit: Limit
+    unit: str
+    rule: DecisionRule
+    policy: Policy
+    context: LimitContext
+
+    @property
+    def parsed_unit(self) -> Unit:
+        """The unit of the limit."""
+        return parse_unit(self.unit or "1")
+
+
+def serving(records: Records, matching: Matching) -> tuple[Rows, Rows]:
+    """Return the pairs of record and point of which the record has a value and may still count."""
+    if records.usable is None:
+        return matching.record, matching.point
+    kept = records.usable[matching.record]
+    return matching.record[kept], matching.point[kept]
+
+
+def limit_columns(
+    limit: Limit, points: Points, records: Columns | None, record: Rows, point: Rows
+) -> Columns:
+    """Return the inputs of the limit for each pair: as the point requires, else as recorded."""
+    numeric: dict[str, Array] = {}
+    text: dict[str, TextColumn] = {}
+    units: dict[str, str] = {}
+    for name in tree_names(limit.tree):
+        columns, rows = (points.columns_lo, point) if _fixed(points, name) else (records, record)
+        if columns is None:
+            continue
+        if name in columns.numeric:
+            numeric[name] = columns.numeric[name][rows]
+            units[name] = columns.units.get(name, "")
+        elif name in columns.text:
+            text[name] = columns.text[name].take(rows.astype(np.intp))
+    return Columns(len(record), numeric, text, units)
+
+
+def _fixed(points: Points, name: str) -> bool:
+    """Whether each point requires one value of that dimension."""
+    low, high = points.columns_lo, points.columns_hi
+    if name in low.text:
+        return True
+    return name in low.numeric and (low is high or np.array_equal(low.numeric[name], high.numeric[name]))
+
+
+def judge(records: Records, record: Rows, point: Rows, judgement: Judgement) -> Readings:
+    """Judge the pairs; the context of the judgement has one row for each, or the limit needs no input."""
+    bounds = evaluate_limit(judgement.limit, judgement.context)
+    low = records.low[record]
+    high = low if records.high is records.low else records.high[record]
+    u = np.full(len(record), np.nan) if records.u is None else records.u[record]
+    low, high, lost = in_bandwidth_of_limit(records, record, low, high, bounds.bandwidth_hz)
+    seen_low, seen_high, why = _compared(low, high, judgement)
+    core = _core(
+        bounds, judgement, records.exact if isinstance(records.exact, bool) else records.exact[record]
+    )
+    shift, inadmissible = _shift(u, judgement, bounds)
+    guard = 0.0 if judgement.rule.name is RuleName.SIMPLE else guard_band(judgement.rule.guard_factor, u)
+    verdict = decide(judgement.rule.name, seen_low, seen_high, core.inward(shift), guard)
+    margin = margins(seen_low, seen_high, core)
+    guarded = margin - shift - guard
+    unsure = np.isnan(shift) if isinstance(shift, np.ndarray) else np.zeros((), bool)
+    _overrule(verdict, unsure | lost, inadmissible)
+    whys = [*why, *_unsure_words(u, judgement, lost)]
+    if not bounds.applies.all() or bounds.unknown.any():
+        whys.extend(_outside(bounds, verdict, margin, guarded))
+    if why:
+        verdict[:] = Verdict.INCONCLUSIVE
+    return Readings(
+        record,
+        point,
+        low,
+        high,
+        u,
+        _side(bounds.lower, len(record)),
+        _side(bounds.upper, len(record)),
+        verdict,
+        margin,
+        guarded,
+        _marginal(verdict, margin, u, bounds, judgement),
+        tuple(dict.fromkeys(whys)),
+    )
+
+
+def _core(bounds: Bounds, judgement: Judgement, exact: NDArray[np.bool_] | bool) -> AcceptanceInterval:
+    """Return the core limit as sides, with the slack that values, or limits, that were computed are allowed."""
+    lower, upper = bounds.lower, bounds.upper
+    slack: Floats = 0.0
+    if not (_as_written(judgement) and np.all(exact)):
+        sizes = [
+            closeness(side, judgement.parsed_unit, converted=True)
+            for side in (lower, upper)
+            if side is not None
+        ]
+        slack = np.maximum.reduce(np.broadcast_arrays(*sizes)) if sizes else 0.0
+    return AcceptanceInterval(lower, upper, _flag(bounds.lower_strict), _flag(bounds.upper_strict), slack)
+
+
+def _as_written(judgement: Judgement) -> bool:
+    """Whether the limit is compared as it was typed: plain numbers, nothing added or taken off."""
+    limit, rule = judgement.limit, judgement.rule
+    if (
+        rule.name is not RuleName.SIMPLE
+        or rule.greatest_uncertainty
+        or limit.test_tolerance
+        or limit.rounding
+    ):
+        return False
+    match limit.tree:
+        case Bound(value=Number(unit="")) | Bound(value=Negative(operand=Number(unit=""))):
+            return True
+        case Between(lower=Number(unit=""), upper=Number(unit="")):
+            return True
+    return False
+
+
+def _flag(flags: NDArray[np.bool_]) -> NDArray[np.bool_] | bool:
+    return bool(flags[0]) if flags.size == 1 else flags
+
+
+def _side(values: Array | None, size: int) -> Array:
+    return np.full(size, np.nan) if values is None else np.broadcast_to(values, (size,))
+
+
+def _compared(low: Array, high: Array, judgement: Judgement) -> tuple[Array, Array, list[str]]:
+    """Return the values that are compared: as they are, or rounded to the last digit of the limit (ASTM E29)."""
+    if judgement.rule.comparison == "absolute":
+        return low, high, []
+    text = _limit_digits(judgement.limit)
+    if text is None:
+        return low, high, ["the rounding method needs a limit written as a number, or with a rounding step"]
+    step = digit_of(text) if judgement.limit.rounding is None else abs(digit_of(text))
+    seen = rounded(low, step)
+    return seen, seen if high is low else rounded(high, step), []
+
+
+def _limit_digits(limit: Limit) -> str | None:
+    if limit.rounding is not None:
+        return limit.rounding.step.text
+    match limit.tree:
+        case Bound(value=Number(text=text)) | Bound(value=Negative(operand=Number(text=text))):
+            return text
+        case Between(lower=Number(text=first), upper=Number(text=second)):
+            return min(first, second, key=digit_of)
+    return None
+
+
+def _shift(u: Array, judgement: Judgement, bounds: Bounds) -> tuple[Floats, NDArray[np.bool_]]:
+    """Return how far the limit moves inwards before the guard band, and which readings are not admissible.
+
+    Excess uncertainty tightens (positive), a test tolerance relaxes (negative); the core limit has neither in it.
+    """
+    rule = judgement.rule
+    shift: Floats = -_test_tolerance(judgement.limit, bounds.unit)
+    nothing = np.zeros((), bool)
+    if rule.greatest_uncertainty is None:
+        return shift, nothing
+    if rule.excess_tightens:
+        return shift + excess(u, rule.greatest_uncertainty), nothing
+    known = ~np.isnan(u)
+    refused = known & ~np.asarray(admissible(u, rule.greatest_uncertainty))
+    return np.asarray(np.where(known, shift, np.nan)), np.asarray(refused)
+
+
+def _test_tolerance(limit: Limit, unit: str) -> float:
+    tolerance = limit.test_tolerance
+    if tolerance is None or tolerance.place == "stimulus":
+        return 0.0
+    amount = tolerance.amount
+    if not amount.unit:
+        return amount.value
+    difference = tolerance_unit(parse_unit(unit or "1"))
+    return converter(parse_unit(amount.unit), difference, difference=True)(amount.value)
+
+
+def _overrule(verdict: Codes, unsure: NDArray[np.bool_], inadmissible: NDArray[np.bool_]) -> None:
+    if unsure.any():
+        verdict[np.broadcast_to(unsure, verdict.shape)] = Verdict.INCONCLUSIVE
+    if inadmissible.any():
+        verdict[inadmissible] = Verdict.NONE
+
+
+def _unsure_words(u: Array, judgement: Judgement, lost: NDArray[np.bool_]) -> list[str]:
+    rule = judgement.rule
+    words = []
+    needed = (
+        rule.name is not RuleName.SIMPLE and rule.guard_factor > 0
+    ) or rule.greatest_uncertainty is not None
+    missing = int(np.count_nonzero(np.isnan(u))) if needed else 0
+    if missing:
+        words.append(f"the rule needs the uncertainty, and {missing} readings have none")
+    if rule.greatest_uncertainty is not None and not rule.excess_tightens:
+        above = int(np.count_nonzero(~admissible(u, rule.greatest_uncertainty) & ~np.isnan(u)))
+        if above:
+            most = 2 * float(np.nanmax(u))
+            words.append(
+                f"{above} readings are not admissible: U up to {most:.3g}, allowed is {rule.greatest_uncertainty:g}"
+            )
+    if lost.any():
+        words.append("the limit states a measurement bandwidth, and some readings state none")
+    return words
+
+
+def _outside(bounds: Bounds, verdict: Codes, margin: Array, guarded: Array) -> list[str]:
+    """Settle readings for which nothing is required (not triggered) or the limit is unknown (inconclusive)."""
+    closed = np.broadcast_to(~bounds.applies & ~bounds.unknown, verdict.shape)
+    unknown = np.broadcast_to(bounds.unknown, verdict.shape)
+    verdict[closed] = Verdict.NOT_TRIGGERED
+    verdict[unknown] = Verdict.INCONCLUSIVE
+    for values in (margin, guarded):
+        values[closed | unknown] = np.nan
+    return [f"the limit is unknown for some readings: {bounds.why}"] if unknown.any() and bounds.why else []
+
+
+def _marginal(
+    verdict: Codes, margin: Array, u: Array, bounds: Bounds, judgement: Judgement
+) -> NDArray[np.bool_]:
+    decided = (verdict == Verdict.PASS) | (verdict == Verdict.FAIL)
+    threshold = _house_threshold(bounds, judgement, margin)
+    near = np.where(np.isnan(u), threshold, 2 * u)
+    return np.asarray(decided & (np.abs(margin) < near))
+
+
+def _house_threshold(bounds: Bounds, judgement: Judgement, margin: Array) -> Floats:
+    if judgement.parsed_unit.is_log:
+        return judgement.policy.marginal_db
+    sizes = [
+        np.where(np.isfinite(side), np.abs(side), 0.0)
+        for side in (bounds.lower, bounds.upper)
+        if side is not None
+    ]
+    if not sizes:
+        return 0.0
+    return np.asarray(judgement.policy.marginal_relative * np.maximum.reduce(np.broadcast_arrays(*sizes)))

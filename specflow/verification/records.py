@@ -1,0 +1,190 @@
+"""Records: all readings of one quantity of one block, from all its tables, brought to the unit of the limit."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import TypeVar
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.errors import UnitError
+from specflow.model.columns import Columns
+from specflow.model.evidence import EvidenceTable, ValueArrays, ValueColumn
+from specflow.model.verdict import Mismatch, RecordRef
+from specflow.verification.comparable import Fit
+from specflow.verification.standing import REPLACED, RowStanding
+
+T = TypeVar("T", bound=np.generic)
+Floats = NDArray[np.float64]
+Rows = NDArray[np.int32]
+
+
+@dataclass(frozen=True, slots=True)
+class Source:
+    """One value column of one evidence table; ``place`` is its position among the value columns."""
+
+    table: EvidenceTable
+    column: ValueColumn
+    place: int
+
+
+@dataclass(frozen=True, slots=True)
+class Held:
+    """What was loaded of one source: its arrays, the item of each row (codes into ``items``) and its standing."""
+
+    source: Source
+    fit: Fit
+    arrays: ValueArrays
+    conditions: Columns
+    item_codes: Rows
+    items: tuple[str, ...]
+    standing: RowStanding
+
+
+@dataclass(frozen=True, slots=True)
+class Records:
+    """Readings [low, high] (m,) of one quantity in the unit of the limit.
+
+    ``u`` (m,) is NaN where no uncertainty is known, None where none is known at all. ``item`` are codes into ``items``
+    ("" where none is named), ``source`` codes into ``sources``, ``row`` positions in the table. ``standing`` are codes
+    (see ``standing``). ``usable`` is None when all rows have a value and may still count. ``exact`` (m,) or a single
+    flag says which values are compared as written.
+    """
+
+    low: Floats
+    high: Floats
+    u: Floats | None
+    conditions: Columns
+    item: Rows
+    items: tuple[str, ...]
+    source: Rows
+    sources: tuple[Source, ...]
+    row: Rows
+    standing: NDArray[np.int8]
+    all_accepted: bool
+    usable: NDArray[np.bool_] | None
+    exact: NDArray[np.bool_] | bool
+    notes: tuple[str, ...] = ()
+    reasons: tuple[str, ...] = ()
+    mismatches: tuple[Mismatch, ...] = ()
+
+    @property
+    def size(self) -> int:
+        """How many readings there are, usable or not."""
+        return len(self.low)
+
+    def reference(self, record: int) -> RecordRef:
+        """Return which value of which table a record is."""
+        source = self.sources[int(self.source[record])]
+        return RecordRef(source.table.id, source.column.name, int(self.row[record]))
+
+
+def no_records(mismatches: Sequence[Mismatch] = ()) -> Records:
+    """Return records of nothing."""
+    none, rows = np.zeros(0), np.zeros(0, np.int32)
+    return Records(
+        none, none, None, Columns(0), rows, ("",), rows, (), rows, np.zeros(0, np.int8), True, None, True,
+        mismatches=tuple(mismatches),
+    )  # fmt: skip
+
+
+def gather(parts: Sequence[Held], conditions: Columns, mismatches: Sequence[Mismatch]) -> Records:
+    """Return the records of all sources; ``conditions`` are theirs, stacked in the same order.
+
+    A source with a value that has no meaning in the unit of the limit (log of a negative) becomes a mismatch.
+    """
+    held: list[tuple[Held, ValueArrays]] = []
+    refused = list(mismatches)
+    for part in parts:
+        try:
+            held.append((part, part.fit.apply(part.arrays)))
+        except UnitError as error:
+            refused.append(_refused(part.source, error))
+            empty = np.full(len(part.arrays.low), np.nan)
+            held.append((part, ValueArrays(empty, empty)))
+    if not held:
+        return no_records(refused)
+    return _stacked(held, conditions, refused)
+
+
+def _refused(source: Source, error: UnitError) -> Mismatch:
+    remedy = error.hint or "correct the unit in the mapping of the table"
+    return Mismatch(source.table.id, source.column.name, source.table.rows, error.message, remedy, "unit")
+
+
+def _stacked(
+    held: Sequence[tuple[Held, ValueArrays]], conditions: Columns, mismatches: Sequence[Mismatch]
+) -> Records:
+    parts = [part for part, _ in held]
+    arrays = [values for _, values in held]
+    low = _joined([one.low for one in arrays])
+    high = low if all(one.high is one.low for one in arrays) else _joined([one.high for one in arrays])
+    item, items = _items(parts)
+    standing = _joined([part.standing.codes for part in parts])
+    accepted = all(part.standing.all_accepted for part in parts)
+    return Records(
+        low,
+        high,
+        _uncertainties(arrays),
+        conditions,
+        item,
+        items,
+        _numbered([len(one.low) for one in arrays]),
+        tuple(part.source for part in parts),
+        _positions([len(one.low) for one in arrays]),
+        standing,
+        accepted,
+        _usable(low, standing, accepted),
+        _exact(parts, arrays),
+        tuple(dict.fromkeys(note for part in parts for note in part.fit.notes)),
+        tuple(dict.fromkeys(reason for part in parts for reason in part.standing.reasons)),
+        tuple(mismatches),
+    )
+
+
+def _joined(parts: Sequence[NDArray[T]]) -> NDArray[T]:
+    return parts[0] if len(parts) == 1 else np.concatenate(parts)
+
+
+def _uncertainties(arrays: Sequence[ValueArrays]) -> Floats | None:
+    if all(one.u is None for one in arrays):
+        return None
+    return _joined([np.full(len(one.low), np.nan) if one.u is None else one.u for one in arrays])
+
+
+def _usable(low: Floats, standing: NDArray[np.int8], accepted: bool) -> NDArray[np.bool_] | None:
+    usable = low == low
+    if not accepted:
+        usable &= standing < REPLACED
+    return None if usable.all() else usable
+
+
+def _exact(parts: Sequence[Held], arrays: Sequence[ValueArrays]) -> NDArray[np.bool_] | bool:
+    if len(parts) == 1 or len({part.fit.exact for part in parts}) == 1:
+        return parts[0].fit.exact
+    return np.concatenate(
+        [np.full(len(one.low), part.fit.exact) for part, one in zip(parts, arrays, strict=True)]
+    )
+
+
+def _items(parts: Sequence[Held]) -> tuple[Rows, tuple[str, ...]]:
+    if len(parts) == 1:
+        return parts[0].item_codes, parts[0].items
+    names: dict[str, int] = {}
+    codes = []
+    for part in parts:
+        places = [names.setdefault(name, len(names)) for name in part.items]
+        codes.append(np.array(places, np.int32)[part.item_codes])
+    return np.concatenate(codes), tuple(names)
+
+
+def _numbered(sizes: Sequence[int]) -> Rows:
+    if len(sizes) == 1:
+        return np.zeros(sizes[0], np.int32)
+    return np.repeat(np.arange(len(sizes), dtype=np.int32), sizes)
+
+
+def _positions(sizes: Sequence[int]) -> Rows:
+    return _joined([np.arange(size, dtype=np.int32) for size in sizes])

@@ -1,0 +1,74 @@
+"""Putting the condition columns of several tables under one another."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.errors import UnitError
+from specflow.model.columns import UNSTATED, Columns, TextColumn
+from specflow.units import convert, parse_unit
+
+
+def stack(parts: Sequence[Columns]) -> Columns:
+    """Return one set of columns with the rows of all parts; numbers are brought to the first unit met.
+
+    A dimension that one part does not state is unstated in its rows; so are numbers in a unit of another kind.
+    """
+    if len(parts) == 1:
+        return parts[0]
+    text_names = dict.fromkeys(name for part in parts for name in part.text)
+    numeric_names = dict.fromkeys(name for part in parts for name in part.numeric if name not in text_names)
+    units = _first_units(parts)
+    return Columns(
+        sum(part.size for part in parts),
+        {
+            name: np.concatenate([_numbers(part, name, units.get(name, "")) for part in parts])
+            for name in numeric_names
+        },
+        {name: stack_words([_words(part, name) for part in parts]) for name in text_names},
+        {name: unit for name, unit in units.items() if name in numeric_names},
+    )
+
+
+def stack_words(columns: Sequence[TextColumn]) -> TextColumn:
+    """Return one column with the rows of all, over one list of labels."""
+    labels: dict[str, int] = {}
+    parts = []
+    for column in columns:
+        places = [labels.setdefault(label, len(labels)) for label in column.labels]
+        parts.append(np.array([*places, UNSTATED], np.int32)[column.codes])
+    return TextColumn(np.concatenate(parts), tuple(labels))
+
+
+def _first_units(parts: Sequence[Columns]) -> dict[str, str]:
+    units: dict[str, str] = {}
+    for part in parts:
+        for name in part.numeric:
+            units.setdefault(name, part.units.get(name, ""))
+    return units
+
+
+def _numbers(part: Columns, name: str, unit: str) -> NDArray[np.float64]:
+    values = part.numeric.get(name)
+    if values is None:
+        return np.full(part.size, np.nan)
+    own = part.units.get(name, "")
+    if own == unit:
+        return values
+    try:
+        return convert(values, parse_unit(own or "1"), parse_unit(unit or "1"))
+    except UnitError:
+        return np.full(part.size, np.nan)
+
+
+def _words(part: Columns, name: str) -> TextColumn:
+    column = part.text.get(name)
+    if column is not None:
+        return column
+    values = part.numeric.get(name)
+    if values is None:
+        return TextColumn(np.full(part.size, UNSTATED, np.int32), ())
+    return TextColumn.of([None if value != value else format(value, ".15g") for value in values.tolist()])

@@ -1,0 +1,173 @@
+"""Standing: may a record count? Withdrawn, superseded, stale, provisional or accepted; the first that applies.
+
+*Withdrawn*: found wrong. *Superseded*: replaced by named rows of another table; a failing reading stays open until
+the supersession names it. *Stale*: a change record took effect after the reading was taken. *Provisional*: not
+accepted yet, dated after the day of judgement, or taken with an instrument whose calibration had run out.
+"""
+
+from __future__ import annotations
+
+from collections import defaultdict
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass, field
+from datetime import date
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.model.base import code_key
+from specflow.model.block import Item
+from specflow.model.columns import TextColumn
+from specflow.model.evidence import EvidenceTable, ItemChange, Supersession, Withdrawal
+from specflow.model.requirement import Method
+from specflow.model.snapshot import Snapshot
+from specflow.model.verdict import Standing
+
+Codes = NDArray[np.int8]
+
+ACCEPTED, PROVISIONAL, STALE, SUPERSEDED, REPLACED, WITHDRAWN = range(6)
+#: Standing by code. REPLACED is superseded by a record that names the fail: nothing of it stays open.
+STANDINGS = (
+    Standing.ACCEPTED,
+    Standing.PROVISIONAL,
+    Standing.STALE,
+    Standing.SUPERSEDED,
+    Standing.SUPERSEDED,
+    Standing.WITHDRAWN,
+)
+
+_OBSERVED = frozenset({Method.TEST, Method.DEMONSTRATION, Method.INSPECTION})
+_REASONED = frozenset({Method.ANALYSIS, Method.SIMILARITY})
+#: Which evidence a change of one aspect touches; every other aspect touches all evidence of its subject.
+_TOUCHED = {"procedure": _OBSERVED, "calibration": _OBSERVED, "model": _REASONED}
+
+
+@dataclass(frozen=True, slots=True)
+class RowStanding:
+    """Standing of each row of a table for one parameter: ``codes`` (rows,) int8, with ``reasons``."""
+
+    codes: Codes
+    all_accepted: bool
+    reasons: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True)
+class StandingRegister:
+    """What people recorded about evidence, by the table or block it is about, as seen on one date."""
+
+    as_of: date
+    withdrawals: Mapping[str, list[Withdrawal]]
+    supersessions: Mapping[str, list[Supersession]]
+    changes: Mapping[str, list[ItemChange]]
+    items: Mapping[str, Item] = field(default_factory=dict)
+
+    @classmethod
+    def of(cls, snapshot: Snapshot, as_of: date) -> StandingRegister:
+        """Collect the records of a snapshot; changes that take effect later than ``as_of`` do not count yet."""
+        withdrawals: dict[str, list[Withdrawal]] = defaultdict(list)
+        supersessions: dict[str, list[Supersession]] = defaultdict(list)
+        changes: dict[str, list[ItemChange]] = defaultdict(list)
+        for withdrawal in snapshot.all(Withdrawal):
+            withdrawals[code_key(withdrawal.table)].append(withdrawal)
+        for supersession in snapshot.all(Supersession):
+            supersessions[code_key(supersession.earlier)].append(supersession)
+        for change in snapshot.all(ItemChange):
+            if change.effective <= as_of:
+                changes[code_key(change.block)].append(change)
+        return cls(as_of, dict(withdrawals), dict(supersessions), dict(changes), snapshot.items_by_name)
+
+    def standing(
+        self, table: EvidenceTable, parameter: str, items: TextColumn, dates: TextColumn | None
+    ) -> RowStanding:
+        """Return the standing of every row of ``table`` as evidence of ``parameter``."""
+        codes = np.zeros(table.rows, np.int8)
+        reasons: list[str] = []
+        for reason, rows in self._provisional(table, dates):
+            _mark(codes, rows, PROVISIONAL, reason, reasons)
+        for reason, rows in self._stale(table, parameter, items, dates):
+            _mark(codes, rows, STALE, reason, reasons)
+        for supersession in self.supersessions.get(code_key(table.id), ()):
+            code = REPLACED if supersession.names_fail else SUPERSEDED
+            reason = f"superseded by {supersession.later}" + _because(supersession.reason)
+            _mark(codes, _rows(table, supersession.rows), code, reason, reasons)
+        for withdrawal in self.withdrawals.get(code_key(table.id), ()):
+            reason = "withdrawn" + _because(withdrawal.reason)
+            _mark(codes, _rows(table, withdrawal.rows), WITHDRAWN, reason, reasons)
+        named = tuple(f"{table.id}: {reason}" for reason in reasons)
+        return RowStanding(codes, not codes.any(), named)
+
+    def _provisional(
+        self, table: EvidenceTable, dates: TextColumn | None
+    ) -> Iterable[tuple[str, NDArray[np.bool_]]]:
+        every = np.ones(table.rows, bool)
+        if table.provisional or not table.accepted_by:
+            yield "not accepted yet", every
+        taken = _dated(table, dates)
+        if taken is not None:
+            late = ~_before_date(table, dates, self.as_of.isoformat(), inclusive=True) & taken
+            yield f"dated after the day of judgement ({self.as_of})", late
+        for instrument in table.equipment:
+            due = instrument.calibration_due
+            if due is not None and taken is not None:
+                expired = taken & ~_before_date(table, dates, due.isoformat(), inclusive=True)
+                yield f"the calibration of {instrument.asset} had run out on {due}", expired
+
+    def _stale(
+        self, table: EvidenceTable, parameter: str, items: TextColumn, dates: TextColumn | None
+    ) -> Iterable[tuple[str, NDArray[np.bool_]]]:
+        for change in self.changes.get(code_key(table.block), ()):
+            if change.parameters and code_key(parameter) not in map(code_key, change.parameters):
+                continue
+            if table.method not in _TOUCHED.get(change.aspect, frozenset(Method)):
+                continue
+            rows = _before_date(table, dates, change.effective.isoformat())
+            dated = _dated(table, dates)
+            rows = rows | ~dated if dated is not None else np.ones(table.rows, bool)
+            if change.item is not None:
+                rows = rows & self._of_item(items, change.item)
+            yield f"{change.aspect} changed on {change.effective} ({change.id}: {change.description})", rows
+
+    def _of_item(self, items: TextColumn, item: str) -> NDArray[np.bool_]:
+        wanted = self.items.get(code_key(item))
+        hits = [self.items.get(code_key(label)) is wanted and wanted is not None for label in items.labels]
+        return np.array([*hits, False])[items.codes]
+
+
+def _mark(codes: Codes, rows: NDArray[np.bool_], code: int, reason: str, reasons: list[str]) -> None:
+    if rows.any():
+        codes[rows] = np.maximum(codes[rows], code)
+        count = int(np.count_nonzero(rows))
+        reasons.append(reason if count == len(codes) else f"{count} of {len(codes)} rows {reason}")
+
+
+def _rows(table: EvidenceTable, rows: tuple[int, ...] | None) -> NDArray[np.bool_]:
+    if rows is None:
+        return np.ones(table.rows, bool)
+    marked = np.zeros(table.rows, bool)
+    marked[[row for row in rows if 0 <= row < table.rows]] = True
+    return marked
+
+
+def _because(reason: str) -> str:
+    return f": {reason}" if reason else ""
+
+
+def _dated(table: EvidenceTable, dates: TextColumn | None) -> NDArray[np.bool_] | None:
+    """Return which rows have a date at all; None where none has."""
+    if table.performed_on is not None:
+        return np.ones(table.rows, bool)
+    return None if dates is None else dates.codes >= 0
+
+
+def _before_date(
+    table: EvidenceTable, dates: TextColumn | None, day: str, *, inclusive: bool = False
+) -> NDArray[np.bool_]:
+    """Return which rows were taken before ``day`` (ISO dates compare as text); False where no date is known."""
+
+    def earlier(text: str) -> bool:
+        return text[:10] <= day if inclusive else text[:10] < day
+
+    whole = table.performed_on is not None and earlier(table.performed_on.isoformat())
+    if dates is None:
+        return np.full(table.rows, whole)
+    return np.array([*map(earlier, dates.labels), whole])[dates.codes]

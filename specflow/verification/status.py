@@ -1,0 +1,221 @@
+"""The status of one requirement: five axes, the label, what governs, and the sentences that say why."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.errors import ConditionsError, ExpressionError
+from specflow.limits import LimitContext, evaluate_limit, parse_limit
+from specflow.limits.tree import undefined_in
+from specflow.model.base import code_key
+from specflow.model.block import Tier
+from specflow.model.limit import LimitState
+from specflow.model.requirement import Activity, Requirement, RuleName
+from specflow.model.verdict import GoverningPoint, PointsState, RequirementStatus
+from specflow.statistics.decision import AcceptanceInterval, decide, guard_band
+from specflow.verification.activity import ActivityOutcome
+from specflow.verification.applicability import applicability
+from specflow.verification.assessment import Assessment, assess
+from specflow.verification.closeout import close_out, label
+from specflow.verification.compliance import Facts, compliance
+from specflow.verification.decisions import Decisions
+from specflow.verification.points import ItemPoints
+from specflow.verification.readings import limit_columns
+from specflow.verification.waiving import NO_WAIVER, Waiving, waiving
+from specflow.verification.workspace import Workspace
+
+
+def status_of(requirement: Requirement, workspace: Workspace, decisions: Decisions) -> RequirementStatus:
+    """Compute the status of a requirement that is proved by its own activities."""
+    applies, reason, remarks = applicability(requirement, workspace.declared)
+    if not applies:
+        return status_from(requirement, Facts(applicable=False, not_applicable_reason=reason), None, remarks)
+    activities = required_activities(requirement, workspace)
+    facts = own_facts(requirement, activities, workspace, decisions)
+    try:
+        found = assess(requirement, activities, workspace)
+    except (ConditionsError, ExpressionError) as error:
+        return status_from(requirement, facts, None, (str(error), *remarks))
+    facts = facts if facts.to_be_defined else _with_evidence(facts, requirement, found, workspace, decisions)
+    return status_from(requirement, facts, found, (*_said(requirement, facts, found, decisions), *remarks))
+
+
+def required_activities(requirement: Requirement, workspace: Workspace) -> Sequence[Activity]:
+    """Return the planned activities, or the default one that every requirement has until somebody plans one."""
+    known = workspace.snapshot.activities_of.get(code_key(requirement.id), ())
+    planned = [activity for activity in known if activity.planned]
+    if planned:
+        return planned
+    return known[:1] or (
+        Activity(
+            id=f"{requirement.id}/default", requirement=requirement.id, tier=requirement.tier, planned=False
+        ),
+    )
+
+
+def own_facts(
+    requirement: Requirement, activities: Sequence[Activity], workspace: Workspace, decisions: Decisions
+) -> Facts:
+    """Return what is known of a requirement before its evidence is looked at."""
+    approval = decisions.latest_approval(requirement.id)
+    approved = approval is not None and approval.decision == "closed"
+    limit = requirement.limit
+    return Facts(
+        to_be_defined=limit.state is LimitState.TBD or undefined_in(limit.tree),
+        to_be_reviewed=limit.state is LimitState.TBR,
+        unallocated=_unallocated(requirement, workspace, decisions),
+        planned=any(activity.planned for activity in activities),
+        split_declared=bool(decisions.splits.get(code_key(requirement.id))),
+        approved=approved and approval is not None and approval.requirement_revision == requirement.revision,
+        nonconformances=decisions.open_nonconformances(requirement.id),
+    )
+
+
+def _unallocated(requirement: Requirement, workspace: Workspace, decisions: Decisions) -> bool:
+    """Whether the requirement is to be handed down and was not.
+
+    It says so itself; where it does not, one above block tier of a block that has blocks below is to be handed down.
+    """
+    needed = requirement.needs_allocation
+    if needed is None:
+        has_below = bool(workspace.snapshot.blocks_below.get(code_key(requirement.block)))
+        needed = requirement.tier is not Tier.BLOCK and has_below
+    key = code_key(requirement.id)
+    return needed and key not in decisions.allocated and not workspace.snapshot.children_of.get(key)
+
+
+def _with_evidence(
+    facts: Facts, requirement: Requirement, found: Assessment, workspace: Workspace, decisions: Decisions
+) -> Facts:
+    outcomes = found.outcomes
+    results = [outcome.result for outcome in outcomes]
+    verdicts = frozenset(verdict for outcome in outcomes for verdict in outcome.verdicts)
+    return replace(
+        facts,
+        counted=any(outcome.counted for outcome in outcomes),
+        complete=all(result.state is PointsState.FULLY_COVERED for result in results),
+        verdicts=verdicts,
+        some_proved=any(result.k for result in results),
+        conflicting=bool(found.conflicts)
+        and not decisions.conflict_is_settled(requirement.id, workspace.as_of),
+        stale=any(outcome.stale for outcome in outcomes),
+        marginal=any(result.marginal for result in results),
+        waiving=_waiving(requirement, found, workspace, decisions),
+    )
+
+
+def _waiving(
+    requirement: Requirement, found: Assessment, workspace: Workspace, decisions: Decisions
+) -> Waiving:
+    waivers = decisions.waivers.get(code_key(requirement.id), ())
+    failing = [pair for outcome in found.outcomes for pair in outcome.failing]
+    if not waivers or not failing:
+        return NO_WAIVER
+
+    def meets(one: ItemPoints, permitted: str) -> NDArray[np.int8]:
+        return _judged_against(permitted, one, requirement, found, workspace)
+
+    def identify(name: str) -> str:
+        return str(getattr(workspace.item(name), "id", name))
+
+    return waiving(requirement, waivers, failing, found.points.columns_lo, meets, identify, workspace.as_of)
+
+
+def _judged_against(
+    permitted: str, one: ItemPoints, requirement: Requirement, found: Assessment, workspace: Workspace
+) -> NDArray[np.int8]:
+    """Return the verdicts of an item's governing readings against the limit that a waiver still asks for."""
+    limit = parse_limit(
+        permitted,
+        unit_hint=requirement.limit.unit,
+        parameter=workspace.dictionary.get(requirement.quantity.parameter),
+    )
+    if limit.unit != requirement.limit.unit:
+        raise ExpressionError(
+            f"it is in {limit.unit or 'no unit'}, the requirement in {requirement.limit.unit}"
+        )
+    every = np.arange(found.points.size, dtype=np.int32)
+    columns = limit_columns(limit, found.points, None, every, every)
+    bounds = evaluate_limit(limit, LimitContext(columns, workspace.declared, found.points.size))
+    results, rule = one.results, requirement.decision_rule
+    guard = 0.0 if rule.name is RuleName.SIMPLE else guard_band(rule.guard_factor, results.u)
+    interval = AcceptanceInterval(bounds.lower, bounds.upper, bounds.lower_strict, bounds.upper_strict, 1e-9)
+    return decide(rule.name, results.value_low, results.value_high, interval, guard)
+
+
+def status_from(
+    requirement: Requirement, facts: Facts, found: Assessment | None, remarks: Sequence[str]
+) -> RequirementStatus:
+    """Put the axes together."""
+    outcomes = found.outcomes if found is not None else ()
+    results = tuple(outcome.result for outcome in outcomes)
+    closed, reason = close_out(facts)
+    return RequirementStatus(
+        requirement=requirement.id,
+        activities=results,
+        standing=found.standing if found is not None else {},
+        k=sum(result.k for result in results),
+        n=sum(result.n for result in results),
+        n_failing=sum(result.n_failing for result in results),
+        n_missing=sum(result.n_missing for result in results),
+        verdict=max(facts.verdicts),
+        compliance=compliance(facts),
+        close_out=closed,
+        close_out_reason=reason,
+        label=label(facts),
+        governing=_worst(outcomes),
+        smallest_margin=_smallest(outcomes),
+        unit=found.unit if found is not None else "",
+        marginal=facts.marginal,
+        remarks=tuple(dict.fromkeys(remark for remark in remarks if remark)),
+        ambiguous=found.ambiguous if found is not None else (),
+        conflicts=found.conflicts if found is not None else (),
+        mismatches=found.mismatches if found is not None else (),
+    )
+
+
+def _worst(outcomes: Sequence[ActivityOutcome]) -> GoverningPoint | None:
+    points = [outcome.result.governing for outcome in outcomes if outcome.result.governing is not None]
+    return max(points, key=lambda point: (point.verdict, -_or_infinite(point.guarded_margin)), default=None)
+
+
+def _smallest(outcomes: Sequence[ActivityOutcome]) -> GoverningPoint | None:
+    points = [
+        outcome.result.smallest_margin for outcome in outcomes if outcome.result.smallest_margin is not None
+    ]
+    return min(points, key=lambda point: point.margin, default=None)
+
+
+def _or_infinite(value: float) -> float:
+    return value if value == value else np.inf
+
+
+def _said(requirement: Requirement, facts: Facts, found: Assessment, decisions: Decisions) -> Sequence[str]:
+    """Return plain sentences about the status, most important first."""
+    said = [*facts.waiving.exceeded]
+    approval = decisions.latest_approval(requirement.id)
+    ready = compliance(facts).value
+    if approval is not None and approval.decision == "closed":
+        if approval.requirement_revision != requirement.revision:
+            said.append(
+                f"the board closed revision {approval.requirement_revision} on {approval.on}; "
+                f"now it is revision {requirement.revision}"
+            )
+        elif label(facts).value != approval.computed_label and approval.computed_label:
+            said.append(
+                f"the board closed it on {approval.on} as {approval.computed_label}; now it is {ready}"
+            )
+    if approval is not None and approval.decision == "kept open":
+        said.append(
+            f"the board kept it open on {approval.on}" + (f": {approval.note}" if approval.note else "")
+        )
+    for outcome in found.outcomes:
+        said.extend(outcome.result.why)
+    if not facts.planned:
+        said.append("nobody planned a verification; a test at any stage is taken as one")
+    said.extend(found.remarks)
+    return said

@@ -1,0 +1,88 @@
+"""Evidence that serves nothing, or not what its sheet says: with the reason, and what would help."""
+
+from __future__ import annotations
+
+from collections import defaultdict
+from collections.abc import Mapping
+
+import numpy as np
+
+from specflow.conditions.match import unstated_conditions
+from specflow.conditions.points import Points
+from specflow.model.base import code_key
+from specflow.model.evidence import EvidenceTable
+from specflow.model.requirement import Requirement
+from specflow.model.snapshot import Snapshot
+from specflow.model.verdict import Mismatch
+from specflow.verification.records import Records
+from specflow.verification.workspace import Workspace
+
+
+def serving_nothing(points: Points, records: Records, serving: np.ndarray) -> tuple[Mismatch, ...]:
+    """Return the sources of which no reading serves a required point; ``serving`` are the records that do."""
+    if len(records.sources) == 1 and len(serving):
+        return ()
+    counts = np.bincount(records.source[serving], minlength=len(records.sources))
+    idle = [place for place in range(len(records.sources)) if counts[place] == 0]
+    return tuple(_idle(points, records, place) for place in idle)
+
+
+def _idle(points: Points, records: Records, place: int) -> Mismatch:
+    source = records.sources[place]
+    rows = np.flatnonzero(records.source == place)
+    unstated = unstated_conditions(points, records.conditions.take(rows))
+    missing = [name for name, lacking in unstated.items() if len(lacking) == len(rows)]
+    if missing:
+        words = ", ".join(name.replace("_", " ") for name in missing)
+        what, remedy = f"does not state the {words}", f"state the {words} for the table in its mapping"
+    else:
+        what = "no reading lies within the setting tolerance of a required point"
+        remedy = "measure at the required conditions, or correct the conditions set"
+    return Mismatch(source.table.id, source.column.name, len(rows), what, remedy, "conditions")
+
+
+def misattributed(snapshot: Snapshot) -> Mapping[str, list[Mismatch]]:
+    """Return, by requirement, the tables whose sheet names it although they hold nothing of its quantity or block."""
+    found: dict[str, list[Mismatch]] = defaultdict(list)
+    for table in snapshot.tables:
+        requirement = snapshot.find(Requirement, table.requirement)
+        if requirement is None:
+            continue
+        what = _contradiction(table, requirement)
+        if what:
+            remedy = "correct the requirement id in the sheet, or the mapping of the table"
+            found[code_key(requirement.id)].append(
+                Mismatch(table.id, "", table.rows, what, remedy, "requirement")
+            )
+    return dict(found)
+
+
+def _contradiction(table: EvidenceTable, requirement: Requirement) -> str:
+    if code_key(table.block) != code_key(requirement.block):
+        return f"the sheet names {requirement.id}, which is on {requirement.block}; the table is on {table.block}"
+    parameters = {code_key(column.quantity.parameter) for column in table.values}
+    if code_key(requirement.quantity.parameter) not in parameters:
+        return f"the sheet names {requirement.id} ({requirement.quantity.parameter}), which the table does not hold"
+    return ""
+
+
+def unmatched(workspace: Workspace) -> Mapping[str, str]:
+    """Return the tables of which no reading serves any requirement, by id, with the reason."""
+    asked = {
+        (code_key(one.block), code_key(one.quantity.parameter)) for one in workspace.snapshot.requirements
+    }
+    reasons: dict[str, str] = {}
+    for table in workspace.snapshot.tables:
+        if table.id in workspace.served:
+            continue
+        reasons[table.id] = _reason(table, asked, workspace)
+    return reasons
+
+
+def _reason(table: EvidenceTable, asked: set[tuple[str, str]], workspace: Workspace) -> str:
+    if table.requirement is not None and workspace.snapshot.find(Requirement, table.requirement) is None:
+        return f"the sheet names {table.requirement}, which is not in the project"
+    names = {column.quantity.parameter for column in table.values}
+    if not any((code_key(table.block), code_key(name)) in asked for name in names):
+        return f"no requirement on {table.block} asks for {', '.join(sorted(names))}"
+    return "no reading can be compared at a required point of any requirement; see their mismatches"

@@ -1,0 +1,215 @@
+"""The workspace of one evaluation: what many requirements share, looked up or computed once.
+
+Points of a conditions set, matching of a set with the rows of tables, arrays and standing of tables, declared values.
+Nothing here outlives the evaluation.
+"""
+
+from __future__ import annotations
+
+from collections import defaultdict
+from collections.abc import Callable, Iterable, Mapping, Sequence
+from dataclasses import dataclass, field
+from datetime import date
+from functools import cached_property
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.conditions.expand import expand
+from specflow.conditions.match import Matching, match
+from specflow.conditions.points import Points
+from specflow.errors import ConditionsError, UnitError
+from specflow.model.base import code_key
+from specflow.model.block import Block, HardwareType, Item
+from specflow.model.columns import Columns, TextColumn
+from specflow.model.conditions import ConditionsSet
+from specflow.model.declared import DeclaredValue
+from specflow.model.evidence import EvidenceColumns, EvidenceFile, FileKind
+from specflow.model.parameter import QuantityIdentity
+from specflow.model.project import Policy
+from specflow.model.requirement import Requirement
+from specflow.model.snapshot import Snapshot
+from specflow.model.verdict import Mismatch
+from specflow.parameters import Dictionary
+from specflow.units import Quantity, parse_unit
+from specflow.verification.comparable import Fit, fit
+from specflow.verification.records import Held, Records, Source, gather, no_records
+from specflow.verification.stacking import stack
+from specflow.verification.standing import RowStanding, StandingRegister
+
+#: The one point of a requirement without a conditions set: every record serves it.
+NOWHERE = ConditionsSet(id="(no conditions)")
+
+
+@dataclass
+class Workspace:
+    """Shared look-ups and memos of one evaluation. ``served``: ids of tables that serve a required point."""
+
+    snapshot: Snapshot
+    dictionary: Dictionary
+    as_of: date
+    served: set[str] = field(default_factory=set)
+    _points: dict[str, Points] = field(default_factory=dict)
+    _matchings: dict[tuple[int, int], tuple[Points, Columns, Matching]] = field(default_factory=dict)
+    _stacks: dict[tuple[str, ...], Columns] = field(default_factory=dict)
+    _records: dict[tuple[object, ...], Records] = field(default_factory=dict)
+    _items: dict[str, tuple[NDArray[np.int32], tuple[str, ...]]] = field(default_factory=dict)
+    _standings: dict[tuple[str, str], RowStanding] = field(default_factory=dict)
+    _columns: dict[str, EvidenceColumns] = field(default_factory=dict)
+
+    @cached_property
+    def policy(self) -> Policy:
+        """The rules of the house."""
+        return self.snapshot.project.policy
+
+    @cached_property
+    def register(self) -> StandingRegister:
+        """What people recorded about the standing of evidence."""
+        return StandingRegister.of(self.snapshot, self.as_of)
+
+    @cached_property
+    def declared(self) -> Mapping[str, Quantity]:
+        """Declared values by name, for limits and applicability."""
+        found: dict[str, Quantity] = {}
+        for value in self.snapshot.all(DeclaredValue):
+            try:
+                found[value.name] = Quantity(value.value, parse_unit(value.unit or "1"))
+            except UnitError:
+                continue  # the name stays undeclared, and the limit says so
+        return found
+
+    @cached_property
+    def sources(self) -> Mapping[tuple[str, str], Sequence[Source]]:
+        """All value columns, by block and parameter."""
+        found: dict[tuple[str, str], list[Source]] = defaultdict(list)
+        for table in self.snapshot.tables:
+            for place, column in enumerate(table.values):
+                key = code_key(table.block), code_key(column.quantity.parameter)
+                found[key].append(Source(table, column, place))
+        return dict(found)
+
+    @cached_property
+    def datasheets(self) -> frozenset[str]:
+        """Keys of the files whose figures are a maker's, not a reading of a specimen."""
+        files = self.snapshot.all(EvidenceFile)
+        return frozenset(code_key(file.id) for file in files if file.kind is FileKind.DATASHEET)
+
+    def fetch(self, requirements: Iterable[Requirement]) -> None:
+        """Load the arrays of all tables that may serve these requirements, in one go."""
+        tables: dict[str, None] = {}
+        for requirement in requirements:
+            key = code_key(requirement.block), code_key(requirement.quantity.parameter)
+            tables.update(dict.fromkeys(source.table.id for source in self.sources.get(key, ())))
+        wanted = [table for table in tables if table not in self._columns]
+        if wanted:
+            self._columns.update(self.snapshot.load_columns(wanted))
+
+    def columns(self, table: str) -> EvidenceColumns:
+        """Return the arrays of one table."""
+        if table not in self._columns:
+            self._columns.update(self.snapshot.load_columns([table]))
+        return self._columns[table]
+
+    def item(self, name: str) -> Item | None:
+        """Return a registered item by its id or serial."""
+        return self.snapshot.items_by_name.get(code_key(name))
+
+    def hardware_type(self, name: str) -> HardwareType:
+        """Return how representative an item is; one that is not registered is taken as the default of an item."""
+        item = self.item(name)
+        return HardwareType.ENGINEERING if item is None else item.hardware_type
+
+    def points(self, requirement: Requirement) -> Points:
+        """Return the required points; ConditionsError when the set is unknown or cannot be expanded."""
+        key = code_key(requirement.conditions or "")
+        found = self._points.get(key)
+        if found is None:
+            found = self._points[key] = expand(self._conditions_set(requirement))
+        return found
+
+    def _conditions_set(self, requirement: Requirement) -> ConditionsSet:
+        if requirement.conditions is None:
+            return NOWHERE
+        conditions = self.snapshot.find(ConditionsSet, requirement.conditions)
+        if conditions is None:
+            raise ConditionsError(
+                f"the conditions set {requirement.conditions} is not in the project",
+                where=requirement.id,
+                hint="load it, or name another one",
+            )
+        return conditions
+
+    def matching(self, points: Points, records: Records) -> Matching:
+        """Return which record serves which point; shared by all quantities recorded in the same rows."""
+        key = id(points), id(records.conditions)
+        known = self._matchings.get(key)
+        if known is None:
+            known = self._matchings[key] = points, records.conditions, match(points, records.conditions)
+        return known[2]
+
+    def records(self, requirement: Requirement, quantity: QuantityIdentity, unit: str) -> Records:
+        """Return the readings of a quantity of the requirement's block, in ``unit``; what may not be compared apart."""
+        key = code_key(requirement.block), quantity, unit
+        found = self._records.get(key)
+        if found is None:
+            found = self._records[key] = self._gathered(requirement.block, quantity, unit)
+        return found
+
+    def _gathered(self, block_id: str, quantity: QuantityIdentity, unit: str) -> Records:
+        block = self.snapshot.find(Block, block_id)
+        parameter = self.dictionary.get(quantity.parameter)
+        fitting: list[tuple[Source, Fit]] = []
+        mismatches: list[Mismatch] = []
+        for source in self.sources.get((code_key(block_id), code_key(quantity.parameter)), ()):
+            found = fit(source.table, source.column, quantity, unit, block, parameter)
+            if isinstance(found, Mismatch):
+                mismatches.append(found)
+            else:
+                fitting.append((source, found))
+        if not fitting:
+            return no_records(mismatches)
+        held = [self._held(source, how) for source, how in fitting]
+        return gather(held, self._stack([source.table.id for source, _ in fitting]), mismatches)
+
+    def _held(self, source: Source, how: Fit) -> Held:
+        columns = self.columns(source.table.id)
+        codes, items = self._item_codes(source.table.id, columns.items)
+        standing = self._standing(source, columns)
+        return Held(
+            source, how, columns.values[source.column.name], columns.conditions, codes, items, standing
+        )
+
+    def _stack(self, tables: Sequence[str]) -> Columns:
+        key = tuple(tables)
+        found = self._stacks.get(key)
+        if found is None:
+            found = self._stacks[key] = stack([self.columns(table).conditions for table in tables])
+        return found
+
+    def _item_codes(self, table: str, names: TextColumn) -> tuple[NDArray[np.int32], tuple[str, ...]]:
+        """Return the item of each row as codes into item ids; serials and ids are one, "" is no item named."""
+        found = self._items.get(table)
+        if found is None:
+            found = self._items[table] = _coded(names, lambda name: getattr(self.item(name), "id", name))
+        return found
+
+    def _standing(self, source: Source, columns: EvidenceColumns) -> RowStanding:
+        key = source.table.id, code_key(source.column.quantity.parameter)
+        found = self._standings.get(key)
+        if found is None:
+            found = self.register.standing(
+                source.table, source.column.quantity.parameter, columns.items, columns.dates
+            )
+            self._standings[key] = found
+        return found
+
+
+def _coded(names: TextColumn, identify: Callable[[str], str]) -> tuple[NDArray[np.int32], tuple[str, ...]]:
+    ids: dict[str, int] = {}
+    places = [ids.setdefault(identify(label), len(ids)) for label in names.labels]
+    if (names.codes < 0).any() or not places:
+        nobody = ids.setdefault("", len(ids))
+        places.append(nobody)
+    else:
+        places.append(0)
+    return np.array(places, np.int32)[names.codes], tuple(ids)
