@@ -32,9 +32,10 @@ class Slot:
 def expand(conditions: ConditionsSet, *, most: int = MOST_POINTS) -> Points:
     """Expand a set into its required points, in the order of its dimensions with the last one fastest.
 
-    A dimension that is a range stays a range: each combination of the others with it is one point.
-    ConditionsError, before anything is allocated, when there would be more than ``most`` points; it names the
-    factors.
+    A dimension that is a range stays a range: each combination of the others with it is one point. Only one dimension
+    may be a range, because ends and gaps are defined along a line; a second one is refused.
+
+    ConditionsError, before anything is allocated, when there would be more than ``most`` points; it names the factors.
     """
     _refuse_too_many(conditions, most)
     _refuse_two_ranges(conditions)
