@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from decimal import Decimal, localcontext
 from fractions import Fraction
 
 from specflow.errors import UnitError
@@ -23,6 +24,7 @@ _KIND_OF_DIMENSION = {
     "dB per length": Kind.DB_PER_LENGTH,
 }
 _LARGEST_EXPONENT = 12
+_LONGEST_NUMBER = 200
 
 
 # dB(x) for the few x that are not simply a level: what stands in the brackets, and its exponent.
@@ -53,6 +55,10 @@ def composed(factors: list[Factor]) -> Unit:
     row = names.log_row(factors[0].name)
     if row is None and factors[0].name.casefold().startswith("db"):
         raise _unknown(factors[0].name)
+    if row is not None and factors[0] != Factor(factors[0].name):
+        raise UnitError(
+            f"{row.symbol} with a number or an exponent is not a unit", hint="the number belongs to the value"
+        )
     if len(factors) == 1 and factors[0] == Factor(factors[0].name):
         return logarithmic(row) if row else linear(_named(factors[0].name))
     if row is not None and row.symbol != "dB":
@@ -61,6 +67,15 @@ def composed(factors: list[Factor]) -> Unit:
     if row is not None and _is_merit(parts):
         return logarithmic(MERIT)
     return _product(parts)
+
+
+def whole_word(text: str) -> Unit | None:
+    """The unit whose spelling stands in the table as it is, with whatever signs it contains ("-", "dB-Hz", "bit/s")."""
+    row = names.log_row(text)
+    if row is not None:
+        return logarithmic(row)
+    name = names.linear_name(text)
+    return linear(name) if name is not None else None
 
 
 def logarithmic(row: LogRow) -> Unit:
@@ -152,7 +167,12 @@ def _plain_product(parts: list[_Part]) -> Unit:
     scale, exponents = _multiplied(parts)
     name = dimension.name(exponents)
     symbol = _symbol("", parts)
-    if parts[0].written[0].isdigit() and parts[0].exponent > 0 and parts[0].written != "1":
+    whole = whole_word(symbol)
+    if whole is not None:  # everything else cancelled, as in 1·dB
+        return whole
+    if abs(exponents.get("dB", 1)) != 1:
+        raise UnitError(f"'{symbol}' is not a quantity: a decibel has no power")
+    if any(part.exponent > 0 and part.written[0].isdigit() and part.written != "1" for part in parts):
         raise UnitError(
             f"'{symbol}' is a value with a unit, not a unit", hint="the number belongs to the value"
         )
@@ -176,7 +196,7 @@ def _part(factor: Factor) -> _Part:
         raise UnitError(
             f"'{_number(factor.coefficient)} {factor.name}^{factor.exponent}' is no part of a unit"
         )
-    if factor.name.casefold() == "db":
+    if factor.name.casefold() == "db" and factor.coefficient == 1:
         return replace(_DECIBEL, exponent=factor.exponent)
     if not factor.name:
         if factor.coefficient != 1:
@@ -225,7 +245,14 @@ def _size(scale: Fraction) -> float:
 
 
 def _number(value: Fraction) -> str:
-    return str(value.numerator) if value.denominator == 1 else f"{float(value):.15g}"
+    """The number as it was written, exactly: it came from a decimal, so it has a finite one."""
+    with localcontext(prec=2 * _LONGEST_NUMBER):
+        exact = Decimal(value.numerator) / Decimal(value.denominator)
+        return (
+            f"{exact:f}"
+            if 1e-4 <= value < 1e6
+            else f"{exact.normalize():E}".replace("E+", "e").replace("E", "e")
+        )
 
 
 def _symbol(head: str, parts: list[_Part]) -> str:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from fractions import Fraction
 
 from specflow.errors import UnitError
 from specflow.units.kinds import Kind
@@ -42,9 +43,10 @@ def level_of(density: Unit) -> Unit:
 def hertz(value: float) -> str:
     """A bandwidth in the prefix that people would use, exact: "40 kHz", "1 MHz"."""
     for size, symbol in ((1e9, "GHz"), (1e6, "MHz"), (1e3, "kHz")):
-        if value >= size:
-            return f"{value / size:.15g} {symbol}"
-    return f"{value:.15g} Hz"
+        text = f"{value / size:.12g}"
+        if value >= size and Fraction(text) * Fraction(size) == Fraction(repr(value)):
+            return f"{text} {symbol}"
+    return f"{value!r} Hz".replace(".0 ", " ")
 
 
 def _bare(unit: Unit) -> str:

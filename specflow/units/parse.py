@@ -49,7 +49,7 @@ def _parsed(text: str) -> Unit:
 def _read(text: str) -> Unit:
     if text in AMBIGUOUS:
         raise UnitError(f"unit '{text}' has more than one meaning", hint=AMBIGUOUS[text])
-    whole = _whole_word(text)
+    whole = compose.whole_word(text)
     if whole is not None:
         return whole
     measured = _MEASURE.match(text)
@@ -63,15 +63,6 @@ def _read(text: str) -> Unit:
     if referred:
         return compose.referred(factorise(referred["reference"]))
     return compose.composed(factorise(plain))
-
-
-def _whole_word(text: str) -> Unit | None:
-    """A spelling that stands in the table as it is, with whatever signs it contains ("-", "dB-Hz", "bit/s")."""
-    row = names.log_row(text)
-    if row is not None:
-        return compose.logarithmic(row)
-    name = names.linear_name(text)
-    return compose.linear(name) if name is not None else None
 
 
 def _without_brackets(text: str) -> str:

@@ -226,6 +226,10 @@ def test_what_cannot_be_read_is_refused_with_what_would_help(text: str, says: st
 @given(st.text(max_size=30) | st.text("dBmWMHzkG/()0123456789 .^*-µ√%e", max_size=30))
 @example("1e99 Hz/1e99 m")
 @example("(" * 70)
+@example("dB/1.23456789012345678 m")
+@example("dBm/1.23456789012345678 MHz")
+@example("dBm/0.001 Hz")
+@example("dB/1e99 m")
 @example("W^12/Hz^12/1e99 m^12")
 def test_any_text_is_a_unit_or_a_refusal(text: str) -> None:
     try:
@@ -248,6 +252,6 @@ def test_a_product_of_units_reads_back_to_itself(head: str, below: list[tuple[st
     try:
         unit = parse_unit(text)
     except UnitError as refusal:
-        assert "meaning" in str(refusal) or "bandwidth" in str(refusal), text
+        assert any(word in str(refusal) for word in ("meaning", "bandwidth", "no power")), text
         return
     assert parse_unit(format_unit(unit)) == unit
