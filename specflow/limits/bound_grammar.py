@@ -11,7 +11,7 @@ import re
 from specflow.limits.conversion import is_difference
 from specflow.limits.draft import Bare, Draft
 from specflow.limits.expression_grammar import last_unit, read_sum
-from specflow.limits.expression_shape import walk
+from specflow.limits.expression_shape import plain_number, walk
 from specflow.limits.expression_text import expression_text
 from specflow.limits.settling import is_bare_arithmetic, settle_tolerance
 from specflow.model.expression import Expression, Name, Negative, Number
@@ -118,18 +118,23 @@ def _sided(draft: Draft, side: Side, strict: bool) -> LimitNode:
 
 
 def _bound(draft: Draft, side: Side, strict: bool, bare: Bare) -> Bound:
+    _refuse_arithmetic(draft, bare)
+    unit = draft.settle([bare.value], bare.written, bare.place)
+    return Bound(side=side, value=plain(bare.value, unit), unit=unit, strict=strict)
+
+
+def _refuse_arithmetic(draft: Draft, bare: Bare) -> None:
     if is_bare_arithmetic(bare.value):
         draft.reader.fail(
             "a sum of plain numbers may be meant as a range or a tolerance",
             hint="write 3..5 V, or 26 +2/-3 dBm, or the result",
             place=bare.place,
         )
-    unit = draft.settle([bare.value], bare.written, bare.place)
-    return Bound(side=side, value=plain(bare.value, unit), unit=unit, strict=strict)
 
 
 def directed(draft: Draft, bare: Bare, side: Side | None = None) -> LimitNode:
     """Give a bare value its direction: its neighbour's, or the one that is better for the parameter."""
+    _refuse_arithmetic(draft, bare)
     if side is not None:
         draft.say(f"{expression_text(bare.value)} has the direction of its neighbour")
         return _bound(draft, side, False, bare)
@@ -211,14 +216,11 @@ def _chained(draft: Draft, low: Expression, written: str, place: int) -> LimitNo
 def _range(draft: Draft, low: Expression, low_unit: str, place: int) -> LimitNode:
     high, high_unit = _value(draft)
     unit = draft.settle([low, high], high_unit or low_unit, place)
-    if (
-        isinstance(low, Number)
-        and isinstance(high, Number)
-        and low.unit == high.unit
-        and low.value > high.value
-    ):
+    low, high = plain(low, unit), plain(high, unit)
+    ends = plain_number(low), plain_number(high)
+    if ends[0] is not None and ends[1] is not None and ends[0] > ends[1]:
         draft.reader.fail("the lower end of the range is above the upper one", place=place)
-    return Between(lower=plain(low, unit), upper=plain(high, unit), unit=unit)
+    return Between(lower=low, upper=high, unit=unit)
 
 
 def _between(draft: Draft, joint: str) -> LimitNode:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from decimal import Decimal
 
 from specflow.limits.conversion import difference_unit, same_unit_spelling
-from specflow.limits.evaluation import plain_number
+from specflow.limits.expression_shape import plain_number
 from specflow.limits.expression_text import expression_text, expression_words
 from specflow.limits.text import limit_text, node_text, statistic_text
 from specflow.limits.words import node_words

@@ -13,10 +13,11 @@ from specflow.errors import ExpressionError
 from specflow.limits.bounds import ALL_FLAG, NO_FLAG, Bounds, LimitContext
 from specflow.limits.combination import alternatives_of, in_unit, power_sum_of
 from specflow.limits.conversion import Floats, convert_to, difference_unit, same_unit_spelling, unit_of
+from specflow.limits.expression_shape import plain_number
 from specflow.limits.expression_value import number_in, truth
 from specflow.limits.inputs import Flags, Inputs
 from specflow.limits.mask import mask_bounds
-from specflow.model.expression import Expression, Negative, Number
+from specflow.model.expression import Number
 from specflow.model.limit import (
     Allowed,
     Alternatives,
@@ -73,13 +74,6 @@ def _constant(tree: LimitNode) -> Bounds | None:
     if tree.side is Side.LOWER:
         return Bounds(number, None, tree.unit, lower_strict=strict)
     return Bounds(None, number, tree.unit, upper_strict=strict)
-
-
-def plain_number(node: Expression) -> float | None:
-    sign = 1.0
-    if type(node) is Negative:
-        node, sign = node.operand, -1.0
-    return sign * float(node.text) if type(node) is Number and not node.unit else None
 
 
 def _evaluated(tree: LimitNode, context: LimitContext) -> Bounds:

@@ -274,9 +274,11 @@ def _read_atom(reader: Reader) -> Expression:
     if name is None:
         reader.fail("the text ends where a number or a name belongs" if reader.done() else
                     f"{reader.rest!r} is neither a number nor a name", place=start)  # fmt: skip
+    if reader.text.startswith("(", start + len(name)):
+        reader.fail(f"{name!r} is not a function", hint=f"functions are {', '.join(FUNCTIONS)}", place=start)
     if name.lower() in RESERVED:
         reader.fail(f"{name!r} is a word of the grammar; a number or a name belongs here", place=start)
-    return _read_after_name(reader, name)
+    return read_after_name(reader, name)
 
 
 def _read_after_number(reader: Reader, text: str) -> Expression:
@@ -289,11 +291,12 @@ def _read_after_number(reader: Reader, text: str) -> Expression:
     name = reader.take_name()
     if name is None:
         reader.fail("'of' needs the name of what the share is taken of", hint="0.05 ppm of carrier")
-    named = _read_after_name(reader, name)
+    named = read_after_name(reader, name)
     return Share(share=number, of=named)
 
 
-def _read_after_name(reader: Reader, name: str) -> Name:
+def read_after_name(reader: Reader, name: str) -> Name:
+    """Read the unit in brackets that may follow a name, and take a unit off its ending."""
     if reader.take("[") is None:
         return _named(name)
     start = reader.place

@@ -15,6 +15,7 @@ from specflow.model.expression import (
     Name,
     Negative,
     Not,
+    Number,
     Operation,
     Share,
 )
@@ -64,3 +65,11 @@ def expression_names(node: Expression) -> frozenset[str]:
 def expression_depth(node: Expression) -> int:
     """Return how deep the expression is nested."""
     return 1 + max((expression_depth(part) for part in parts_of(node)), default=0)
+
+
+def plain_number(node: Expression) -> float | None:
+    """Return the value of a signed number without a unit of its own; None for anything else."""
+    sign = 1.0
+    if type(node) is Negative:
+        node, sign = node.operand, -1.0
+    return sign * float(node.text) if type(node) is Number and not node.unit else None

@@ -36,8 +36,8 @@ def mask_bounds(mask: Mask, inputs: Inputs) -> Bounds:
     for segment in mask.segments:
         _add_segment(found, mask, segment, place, inputs, sign)
     excluded = _excluded(mask, inputs)
-    held = found.held & ~excluded
-    unknown = found.undecided & ~held & ~excluded
+    unknown = found.undecided & ~excluded
+    held = found.held & ~excluded & ~unknown
     nothing = np.inf if mask.side is Side.UPPER else -np.inf
     value = np.where(unknown, np.nan, np.where(held, sign * found.value, nothing))
     strict = ALL_FLAG if mask.strict else NO_FLAG

@@ -45,7 +45,7 @@ _PLAINER = str.maketrans(
 _GRAMMAR_WORDS = (
     "min max minimum maximum or and to if in at of over with when where rounded test tolerance for by between "
     "worst mean per not else otherwise tbr tbd tbc ffs allow within whichever is from except none no about on than "
-    "up down least more less"
+    "up down least more less linear log strict"
 )
 RESERVED = frozenset(_GRAMMAR_WORDS.split())
 

@@ -14,7 +14,13 @@ from itertools import pairwise
 
 from specflow.limits.bound_grammar import plain
 from specflow.limits.draft import Draft
-from specflow.limits.expression_grammar import read_condition, read_interval_or_value, read_sum, same_unit
+from specflow.limits.expression_grammar import (
+    read_after_name,
+    read_condition,
+    read_interval_or_value,
+    read_sum,
+    same_unit,
+)
 from specflow.limits.expression_shape import is_condition
 from specflow.model.expression import Expression, Interval, Member, Name, Number
 from specflow.model.limit import (
@@ -73,9 +79,10 @@ def _after_colon(draft: Draft, read_limit: ReadLimit, after: str) -> LimitNode:
 def read_by(draft: Draft, read_limit: ReadLimit) -> LimitNode:
     """Read ``NAME[unit] (VALUE | VALUE: LIMIT; ...)`` after ``by``."""
     reader = draft.reader
-    name = read_sum(reader)
-    if not isinstance(name, Name):
+    word = reader.take_name()
+    if word is None:
         reader.fail("'by' is followed by the name of a condition", hint="by band (n257: >= 20 dBm; ...)")
+    name = read_after_name(reader, word)
     reader.expect("(", f"'by {name.name}'")
     with draft.inside():
         cases: list[Case] = []
