@@ -10,6 +10,7 @@ from collections.abc import Sequence
 from datetime import datetime
 from io import BytesIO
 from pathlib import Path
+from textwrap import wrap
 from typing import TYPE_CHECKING, Any
 
 from specflow.errors import FileError
@@ -21,6 +22,7 @@ if TYPE_CHECKING:
 
 _GUIDANCE_ROW, _HEADER_ROW, _FIRST_ROW = 1, 2, 3
 _ROWS_TO_FILL = 2000
+_NAME_WIDTH, _TEXT_WIDTH = 26, 110
 _CREATED = datetime(2026, 1, 1)  # a fixed date: the same layouts give the same bytes
 
 _LEADING = (
@@ -89,11 +91,13 @@ def _formats(book: Workbook) -> dict[str, Any]:
 
 
 def _write_guide(sheet: Worksheet, layouts: Sequence[SheetLayout], formats: dict[str, Any]) -> None:
-    sheet.set_column(0, 0, 26)
-    sheet.set_column(1, 1, 110)
+    sheet.set_column(0, 0, _NAME_WIDTH)
+    sheet.set_column(1, 1, _TEXT_WIDTH)
     sheet.write_string(0, 0, GUIDE, formats["title"])
+    sheet.hide_gridlines(2)
     row = 2
     for paragraph in _LEADING:
+        sheet.set_row(row, _height([(paragraph, _TEXT_WIDTH)]))
         sheet.write_string(row, 1, paragraph, formats["text"])
         row += 1
     row += 1
@@ -102,25 +106,36 @@ def _write_guide(sheet: Worksheet, layouts: Sequence[SheetLayout], formats: dict
     for layout in layouts:
         row += 1
         needed = ", ".join(column.title for column in layout.required)
+        text = f"{layout.intro} Columns that must be there: {needed}."
+        sheet.set_row(row, _height([(text, _TEXT_WIDTH)]))
         sheet.write_url(row, 0, f"internal:'{layout.title}'!A1", formats["name"], layout.title)
-        sheet.write_string(row, 1, f"{layout.intro} Columns that must be there: {needed}.", formats["text"])
+        sheet.write_string(row, 1, text, formats["text"])
 
 
 def _write_sheet(sheet: Worksheet, layout: SheetLayout, formats: dict[str, Any]) -> None:
     sheet.write_string(0, 0, f"{layout.title}: {layout.intro}", formats["name"])
-    sheet.set_row(_GUIDANCE_ROW, _guidance_height(layout.columns))
+    sheet.set_row(
+        _GUIDANCE_ROW, _height([(_guidance(column), column.width) for column in layout.columns], 12)
+    )
+    sheet.set_row(_HEADER_ROW, _height([(column.title, column.width - 2) for column in layout.columns]))
     for place, column in enumerate(layout.columns):
         sheet.set_column(place, place, column.width, formats["cell"])
-        needed = "Needed. " if column.required else ""
-        sheet.write_string(_GUIDANCE_ROW, place, needed + column.guidance, formats["guidance"])
+        sheet.write_string(_GUIDANCE_ROW, place, _guidance(column), formats["guidance"])
         sheet.write_string(
             _HEADER_ROW, place, column.title, formats["needed" if column.required else "header"]
         )
         _add_choices(sheet, place, column)
     for row, example in enumerate(layout.examples(), start=_FIRST_ROW):
+        sheet.set_row(
+            row, _height([(example.get(column.key, ""), column.width) for column in layout.columns])
+        )
         for place, column in enumerate(layout.columns):
             sheet.write_string(row, place, example.get(column.key, ""), formats["example"])
     sheet.freeze_panes(_FIRST_ROW, _columns_to_freeze(layout))
+
+
+def _guidance(column: SheetColumn) -> str:
+    return f"{'Needed. ' if column.required else ''}{column.guidance}".strip()
 
 
 def _add_choices(sheet: Worksheet, place: int, column: SheetColumn) -> None:
@@ -147,9 +162,10 @@ def _columns_to_freeze(layout: SheetLayout) -> int:
     return min(2, len(layout.columns))
 
 
-def _guidance_height(columns: Sequence[SheetColumn]) -> int:
-    """Height in points of the guidance row: 12 points a line, about 1.2 characters a unit of column width."""
-    lines = max(
-        -(-len(column.guidance + "Needed. ") // max(int(column.width * 1.1), 1)) for column in columns
-    )
-    return 12 * min(max(lines, 2), 12) + 4
+def _height(cells: Sequence[tuple[str, int]], line: int = 15) -> int:
+    """Height in points of a row of wrapped texts: spreadsheet programs do not all fit it when a file is opened.
+
+    ``cells`` are texts with the width of their column, in characters.
+    """
+    lines = max(len(wrap(text, max(width, 4))) for text, width in cells)
+    return line * max(lines, 1) + 3

@@ -17,12 +17,14 @@ from specflow.importers.sheets.row import SheetRow
 from specflow.importers.sheets.table import find_header, missing_header, read_table
 from specflow.model.draft import Draft
 from specflow.model.finding import Finding, Severity
+from specflow.model.nouns import NOUNS
 from specflow.model.origin import Origin
 from specflow.model.sheet import GUIDE, header_key
 from specflow.model.snapshot import Snapshot
 from specflow.parameters import Dictionary
 
 _NUMBERED = re.compile(r"^[0-9]+|[0-9]+$")
+_READING_ORDER = [noun.name for noun in NOUNS]  # what others refer to comes first
 Found = tuple[Sheet, Grid]
 
 
@@ -74,7 +76,7 @@ def _recognised(file: GridFile, findings: list[Finding]) -> list[Found]:
     if not named:
         raise _nothing_known(file)
     findings.extend(_not_read(grid) for grid in others)
-    return sorted(named, key=lambda found: SHEETS.index(found[0]))
+    return sorted(named, key=lambda found: _READING_ORDER.index(found[0].layout.noun))
 
 
 def _by_headers(grids: Sequence[Grid], findings: list[Finding]) -> tuple[list[Found], list[Grid]]:

@@ -24,22 +24,21 @@ from specflow.importers.sheets import (
 )
 from specflow.importers.sheets.sheet import Sheet
 
-#: In the order in which they are read: what others refer to comes first. The template has the same order, but for
-#: the sheets that most projects start with.
+#: In the order of the template: what people fill in first stands first.
 SHEETS: tuple[Sheet, ...] = (
-    parameters.SHEET,
+    requirements.SHEET,
     blocks.SHEET,
+    conditions_sets.SHEET,
+    activities.SHEET,
     items.SHEET,
     declared_values.SHEET,
-    conditions_sets.SHEET,
-    condition_maps.SHEET,
     uncertainty.SHEET,
-    requirements.SHEET,
-    activities.SHEET,
+    condition_maps.SHEET,
+    parameters.SHEET,
     allocations.SHEET,
+    change_records.SHEET,
     nonconformances.SHEET,
     waivers.SHEET,
-    change_records.SHEET,
     *board_decisions.SHEETS,
 )
 

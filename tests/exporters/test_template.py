@@ -1,0 +1,112 @@
+"""The workbook template: what it offers, and that it reads back."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from pathlib import Path
+
+import pytest
+from openpyxl import load_workbook
+from openpyxl.worksheet.worksheet import Worksheet
+
+from specflow.errors import FileError
+from specflow.exporters.template import template_bytes, write_template
+from specflow.importers.sheets import SHEETS
+from specflow.importers.workbook import read_workbook
+from specflow.model.nouns import NOUN_BY_DOCUMENT
+from specflow.model.sheet import EXAMPLE, GUIDE, SheetLayout
+from specflow.parameters import load_dictionary
+from tests.builders import a_snapshot
+
+LAYOUTS = [sheet.layout for sheet in SHEETS]
+
+
+@pytest.fixture(scope="module")
+def template(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    path = tmp_path_factory.mktemp("template") / "project.xlsx"
+    write_template(LAYOUTS, path)
+    return path
+
+
+def sheets_of(path: Path) -> Iterator[tuple[SheetLayout, Worksheet]]:
+    book = load_workbook(path)
+    yield from ((layout, book[layout.title]) for layout in LAYOUTS)
+
+
+def test_there_is_a_guide_and_one_sheet_a_noun(template: Path) -> None:
+    assert load_workbook(template).sheetnames == [GUIDE, *(layout.title for layout in LAYOUTS)]
+
+
+def test_every_sheet_has_guidance_headers_and_a_marked_example_row(template: Path) -> None:
+    for layout, sheet in sheets_of(template):
+        headers = [cell.value for cell in sheet[3]]
+        assert headers == [column.title for column in layout.columns]
+        assert sum(bool(cell.value) for cell in sheet[2]) >= len(layout.required)
+        assert sheet["A4"].value == EXAMPLE
+        assert sheet.freeze_panes == "C4"
+        for column, cell in zip(layout.columns, sheet[4], strict=True):
+            assert (cell.value or "") == column.example
+            assert not column.required or column.example, f"{layout.title}: {column.title} shows no example"
+
+
+def test_drop_downs_offer_the_words_that_are_read(template: Path) -> None:
+    for layout, sheet in sheets_of(template):
+        offered = {
+            str(one.sqref).split(":")[0]: one.formula1 for one in sheet.data_validations.dataValidation
+        }
+        for column, cell in zip(layout.columns, sheet[4], strict=True):
+            assert (cell.coordinate in offered) == bool(column.choices)
+            if column.choices:
+                assert offered[cell.coordinate].strip('"').split(",") == [
+                    str(choice) for choice in column.choices
+                ]
+
+
+def test_every_cell_is_formatted_as_text_so_that_ids_stay_ids(template: Path) -> None:
+    for _, sheet in sheets_of(template):
+        assert {cell.number_format for cell in sheet[4]} == {"@"}
+
+
+def test_the_template_as_it_is_loads_nothing(template: Path) -> None:
+    draft = read_workbook(template, a_snapshot(), load_dictionary())
+    assert not draft.documents
+    assert [one.rule for one in draft.findings] == ["workbook-nothing-to-load"]
+
+
+def test_the_example_rows_load_without_a_finding_once_their_mark_is_emptied(
+    template: Path, tmp_path: Path
+) -> None:
+    book = load_workbook(template)
+    for layout in LAYOUTS:
+        for row in book[layout.title].iter_rows(min_row=4, max_col=1):
+            row[0].value = None
+    book.save(tmp_path / "filled.xlsx")
+
+    draft = read_workbook(tmp_path / "filled.xlsx", a_snapshot(), load_dictionary())
+
+    assert not draft.findings
+    assert {NOUN_BY_DOCUMENT[type(one)].name for one in draft.documents} == {
+        layout.noun for layout in LAYOUTS
+    }
+    again = read_workbook(tmp_path / "filled.xlsx", a_snapshot(*draft.documents), load_dictionary())
+    assert not again.findings
+    assert all(document in draft.documents for document in again.documents)
+
+
+def test_the_same_layouts_give_the_same_bytes() -> None:
+    assert template_bytes(LAYOUTS) == template_bytes(LAYOUTS)
+
+
+def test_a_workbook_that_is_there_already_is_not_overwritten(template: Path) -> None:
+    before = template.read_bytes()
+    with pytest.raises(FileError, match="exists already"):
+        write_template(LAYOUTS, template)
+    assert template.read_bytes() == before
+
+
+def test_a_folder_that_is_not_there_is_named_and_nothing_is_left(tmp_path: Path) -> None:
+    with pytest.raises(FileError) as refused:
+        write_template(LAYOUTS, tmp_path / "nowhere" / "project.xlsx")
+    assert "cannot be written" in refused.value.message
+    assert refused.value.hint
+    assert list(tmp_path.iterdir()) == []
