@@ -14,7 +14,7 @@ from specflow.errors import StoreError
 from specflow.model.change import Change
 from specflow.model.snapshot import Snapshot
 from specflow.store import create_project, open_project, schema
-from specflow.store.place import place_of
+from specflow.store.project import place_of
 from specflow.store.rows import metadata
 from tests.builders import a_block, a_project, adding, an_evidence_file, an_evidence_table, some_evidence
 from tests.conftest import noon

@@ -3,12 +3,13 @@
 One project is one SQLite file (``*.specflow``), or one PostgreSQL database by URL, with the same tables.
 
 - ``project.py``: ``create_project``, ``open_project`` and ``ProjectStore`` (load, apply, history, baselines)
-- ``place.py``: where a project is, and the connections to it; ``faults.py``: what databases say, as StoreError
+- ``place.py``: what is asked of the place of a project: ``file.py`` (SQLite) or ``database.py`` (PostgreSQL);
+  ``faults.py``: what databases say, as StoreError
 - ``rows.py``: the tables; ``convert.py``: documents as rows; ``columns.py``: arrays of evidence as rows
 - ``reading.py``: loading; ``batch.py``: what is written together; ``writing.py``: the one transaction that writes it;
   ``links.py``: codes that point to codes
 - ``history.py``: who changed what; ``kept.py``: bytes beside documents; ``schema.py``: versions and
-  migrations; ``backup.py``: copies
+  migrations
 
 Reading speaks plain SQL to the driver and needs neither SQLAlchemy nor Alembic, whose import would take longer than
 loading a project does (measured: 0.2 s against 0.05 s for 1,000 requirements); they are imported by the first write

@@ -36,8 +36,12 @@ def make_batch(
     """
     edits = read_edits(changes)
     added = {edit.key: edit for edit in edits if edit.change.action == "add"}
-    for edit in added.values():
-        if edit.noun.name == "baseline":
+    for edit in edits:
+        if edit.noun.name == "project" and edit.change.action != "edit":
+            raise DocumentError(
+                "a project has one project document, from its creation to its end", where=edit.title
+            )
+        if edit.noun.name == "baseline" and edit.change.action == "add":
             raise DocumentError("a baseline is stored together with its bytes", where=edit.title)
     return Batch(edits, _pack_all(added.values(), columns), _check_files(added, files))
 

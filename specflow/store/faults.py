@@ -34,6 +34,11 @@ _SQLITE = (
         "check that file and folder exist and may be written",
     ),
     ("SQLITE_IOERR", "the disk does not read or write", "check the disk and its free space, and try again"),
+    (
+        "SQLITE_ERROR: no such table",
+        "not a complete specflow project: a table is missing",
+        "go back to a backup",
+    ),
     ("SQLITE_TOOBIG", "one column of evidence is larger than the database takes", "split the table"),
 )
 
@@ -73,8 +78,7 @@ def store_error(error: Exception, where: str) -> StoreError | None:
     """Return the StoreError for a driver's error (or SQLAlchemy's wrapper of one), None for any other error."""
     cause = getattr(error, "orig", None) or error
     if isinstance(cause, sqlite3.Error):
-        name = getattr(cause, "sqlite_errorname", "")
-        return _fault(name, _SQLITE, cause, where)
+        return _fault(f"{getattr(cause, 'sqlite_errorname', '')}: {cause}", _SQLITE, cause, where)
     if type(cause).__module__.partition(".")[0] == "psycopg":
         state = getattr(cause, "sqlstate", None)
         if state is None:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections import defaultdict
-from collections.abc import Iterable, Iterator, Mapping, Sequence
+from collections.abc import Collection, Iterable, Iterator, Mapping, Sequence
 from graphlib import CycleError, TopologicalSorter
 from typing import Any
 
@@ -16,6 +16,7 @@ from specflow.store.convert import Edit, Key
 from specflow.store.rows import LINK_TABLES, TABLES, holds_many
 
 _CODES_AT_ONCE = 1000
+_SHOWN = 10
 
 
 def portions(values: Iterable[str]) -> Iterator[Sequence[str]]:
@@ -52,7 +53,7 @@ def resolve(connection: Connection, edits: Sequence[Edit], known: Mapping[Key, i
     if lost:
         raise DocumentError(
             f"{'a link leads' if len(lost) == 1 else f'{len(lost)} links lead'} to what is not in the project",
-            where="; ".join(lost[:10]) + ("; ..." if len(lost) > 10 else ""),
+            where=_listed(lost),
             hint="add what is named first, or correct the id",
         )
     return targets
@@ -92,33 +93,35 @@ def _check_no_cycle(connection: Connection, noun: Noun, field: str) -> None:
         ) from None
 
 
-def check_nothing_left_pointing(connection: Connection, removed: Mapping[str, Sequence[int]]) -> None:
-    """Raise DocumentError naming the documents that still point to removed ones (row keys by noun)."""
-    pointing: list[str] = []
-    for noun in NOUNS:
-        for field, target in noun.links:
-            if target in removed:
-                pointing += _pointing(connection, noun, field, TABLES[target], removed[target])
+def check_nothing_left_pointing(connection: Connection, removed: Collection[str]) -> None:
+    """Raise DocumentError naming the documents that still point to removed ones of these nouns."""
+    pointing = [
+        sentence
+        for noun in NOUNS
+        for field, target in noun.links
+        if target in removed
+        for sentence in _pointing(connection, noun, field, TABLES[target])
+    ]
     if pointing:
         raise DocumentError(
-            "what is removed is still in use",
-            where="; ".join(pointing[:10]) + ("; ..." if len(pointing) > 10 else ""),
-            hint="remove or change these as well",
+            "what is removed is still in use", where=_listed(pointing), hint="remove or change these as well"
         )
 
 
-def _pointing(
-    connection: Connection, noun: Noun, field: str, target: Table, removed: Sequence[int]
-) -> Iterator[str]:
+def _pointing(connection: Connection, noun: Noun, field: str, target: Table) -> Iterator[str]:
     pairs = _pairs(noun, field).where(TABLES[noun.name].c.removed_at.is_(None)).subquery()
     named = target.alias()
     found = (
         select(pairs.c.code, named.c.code.label("used"))
         .join(named, named.c.pk == pairs.c.target_pk)
-        .where(named.c.pk.in_(removed))
+        .where(named.c.removed_at.is_not(None))
     )
     for row in connection.execute(found):
         yield f"{noun.title} {row.code}: {field} names {row.used}"
+
+
+def _listed(sentences: Sequence[str]) -> str:
+    return "; ".join(sentences[:_SHOWN]) + ("; ..." if len(sentences) > _SHOWN else "")
 
 
 def _pairs(noun: Noun, field: str) -> Select[Any]:

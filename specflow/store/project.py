@@ -11,21 +11,24 @@ from datetime import UTC, datetime
 from pathlib import Path
 from typing import TYPE_CHECKING, Self
 
-from specflow.errors import DocumentError, StoreError
+from specflow.errors import StoreError
 from specflow.exchange import payload_text
 from specflow.model.baseline import Baseline
 from specflow.model.change import Change
 from specflow.model.evidence import EvidenceColumns
 from specflow.model.project import Project
 from specflow.model.snapshot import Snapshot
-from specflow.store.backup import back_up, create_file
+from specflow.store.database import ProjectDatabase
 from specflow.store.faults import translated
+from specflow.store.file import ProjectFile
 from specflow.store.history import HistoryEntry, read_history
-from specflow.store.place import APPLICATION_ID, PATIENCE, Place, ProjectFile, place_of
+from specflow.store.place import PATIENCE, Place
 from specflow.store.reading import load_snapshot, read_revision
 from specflow.store.schema import check_version, migrate, newest_version, stored_version
 
 if TYPE_CHECKING:
+    from sqlalchemy import Connection
+
     from specflow.store.batch import Batch
 
 Clock = Callable[[], datetime]
@@ -36,6 +39,20 @@ def utc_now() -> datetime:
     return datetime.now(UTC)
 
 
+def place_of(where: str | Path, *, read_only: bool = False, patience: float = PATIENCE) -> Place:
+    """Return the place that a path or an address names. Raises StoreError for an address of another kind."""
+    text = str(where)
+    if "://" not in text:
+        return ProjectFile(Path(text), read_only=read_only, patience=patience)
+    if text.startswith(("postgresql:", "postgresql+psycopg:")):
+        return ProjectDatabase(text, read_only=read_only, patience=patience)
+    raise StoreError(
+        f"{text.partition('://')[0]} databases are not supported",
+        where="project address",
+        hint="give the path of a *.specflow file or a postgresql+psycopg:// address",
+    )
+
+
 def create_project(
     where: str | Path,
     project: Project,
@@ -44,39 +61,31 @@ def create_project(
     clock: Clock = utc_now,
     patience: float = PATIENCE,
 ) -> ProjectStore:
-    """Create an empty project in a new file or an empty database, and open it.
+    """Create a project in a new file or an empty database, and open it. It holds ``project``, at revision 1.
 
     Raises StoreError when there is a project (or any other file) already; what was begun is then not left behind.
     """
     place = place_of(where, patience=patience)
-    if isinstance(place, ProjectFile):
-        create_file(place.path, lambda: _fill(place, project, by, clock))
-    else:
-        with translated(place.name):
-            place.check()
-            _fill(place, project, by, clock)
+    with place.new(), place.migrating() as connection:
+        _fill(connection, place.name, project, by, clock)
     return ProjectStore(place, clock)
 
 
-def _fill(place: Place, project: Project, by: str, clock: Clock) -> None:
+def _fill(connection: Connection, name: str, project: Project, by: str, clock: Clock) -> None:
     from sqlalchemy import inspect
 
+    from specflow.store.batch import Batch
+    from specflow.store.convert import read_edits
     from specflow.store.rows import project_state
+    from specflow.store.writing import Acceptance, accept
 
-    if isinstance(place, ProjectFile):
-        with place.reading() as run:
-            run(f"PRAGMA application_id = {APPLICATION_ID}")
-            run("PRAGMA journal_mode = WAL")
-    with place.migrating() as connection:
-        if inspect(connection).has_table("alembic_version"):
-            raise StoreError(
-                "there is a project already", where=place.name, hint="open it, or name another database"
-            )
-        migrate(connection)
-        created = {"pk": 1, "uuid": str(uuid.uuid4()), "created_at": _iso(clock), "revision": 0}
-        connection.execute(project_state.insert().values(created))
+    if inspect(connection).has_table("alembic_version"):
+        raise StoreError("there is a project already", where=name, hint="open it, or name another database")
+    migrate(connection)
+    state = {"pk": 1, "uuid": str(uuid.uuid4()), "created_at": _iso(clock), "revision": 0}
+    connection.execute(project_state.insert().values(state))
     add = Change(noun="project", id=project.id, action="add", after=payload_text(project))
-    ProjectStore(place, clock).apply([add], by=by, reason="created")
+    accept(connection, Batch(read_edits([add])), Acceptance(by, "created"), lambda: _iso(clock))
 
 
 def open_project(
@@ -89,9 +98,9 @@ def open_project(
 ) -> ProjectStore:
     """Open a project; one of an older schema is copied aside (see ``ProjectStore.notes``) and upgraded first.
 
-    ``patience``: seconds that a write waits for another program's. ``backup_folder``: where the copy goes; beside
-    the file, or the current folder for a server. Raises StoreError when there is no project, it is not one, it is
-    of a newer schema, or of an older one and only to be read.
+    ``patience``: seconds that a write waits for another program's. ``backup_folder``: where the copy goes instead of
+    beside the file (for a server: the current folder). Raises StoreError when there is no project, it is not one,
+    it is of a newer schema, or of an older one and only to be read.
     """
     place = place_of(where, read_only=read_only, patience=patience)
     place.check()
@@ -108,16 +117,12 @@ def _upgrade(place: Place, clock: Clock, backup_folder: Path | None) -> str:
             where=place.name,
             hint="open it once for writing; it is copied and upgraded then",
         )
-    file = (
-        place.path
-        if isinstance(place, ProjectFile)
-        else Path(place.name.rpartition("/")[2].partition("?")[0])
-    )
     with translated(place.name):
         with place.reading() as run:
             before = stored_version(run)
-        copy = (backup_folder or file.parent) / f"{file.stem}-schema{before}-{clock():%Y%m%dT%H%M%S}.specflow"
-        back_up(place, copy)
+        name = f"{place.copies.name}-schema{before}-{clock():%Y%m%dT%H%M%S}.specflow"
+        copy = (backup_folder or place.copies.parent) / name
+        place.copy_to(copy)
         with place.migrating() as connection:
             migrate(connection)
     return f"upgraded from schema {before} to {newest_version()}; the project as it was is kept in {copy}"
@@ -194,19 +199,16 @@ class ProjectStore:
         )
 
     def _write(self, batch: Batch, by: str, reason: str, expected_revision: int | None) -> int:
-        from specflow.store.writing import Acceptance, write_batch, write_history
+        from specflow.store.writing import Acceptance, accept
 
         if self._place.read_only:
             raise StoreError("the project was opened to be read only", where=self.name)
-        if not by.strip():
-            raise DocumentError("nobody is named who accepts the changes", where=self.name)
         if not batch.edits:
             return self.revision
-        acceptance = Acceptance(by.strip(), reason, expected_revision)
         with translated(self.name), self._place.writing() as connection:
-            revision = write_batch(connection, batch, acceptance)
-            write_history(connection, batch.edits, revision, acceptance, _iso(self._clock))
-        return revision
+            return accept(
+                connection, batch, Acceptance(by, reason, expected_revision), lambda: _iso(self._clock)
+            )
 
     def history(self, noun: str | None = None, id: str | None = None) -> list[HistoryEntry]:
         """Return the accepted changes of the project, of one noun or of one document, oldest first."""
@@ -229,7 +231,8 @@ class ProjectStore:
 
     def backup(self, path: str | Path) -> None:
         """Write a copy of the project to a new file, while others may be writing."""
-        back_up(self._place, Path(path))
+        with translated(self.name):
+            self._place.copy_to(Path(path))
 
 
 def _iso(clock: Clock) -> str:

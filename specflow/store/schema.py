@@ -35,9 +35,13 @@ def newest_version() -> int:
 
 
 def stored_version(run: Run) -> int:
-    """Return the version of the schema that a project has; 0 for none yet."""
-    rows = list(run("SELECT version_num FROM alembic_version"))
-    return int(rows[0][0]) if rows else 0
+    """Return the version of the schema that a project has. Raises StoreError when the tables are of another program."""
+    rows = [
+        str(version) for (version,) in run("SELECT version_num FROM alembic_version CROSS JOIN project_state")
+    ]
+    if len(rows) != 1 or not rows[0].isdecimal():
+        raise StoreError("not a specflow project: its tables are of another program or incomplete")
+    return int(rows[0])
 
 
 def check_version(place: Place) -> bool:

@@ -8,7 +8,7 @@ the same in a project of any size.
 from __future__ import annotations
 
 from collections import defaultdict
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, fields
 from typing import Any
 
@@ -38,7 +38,7 @@ class Acceptance:
 
     by: str
     reason: str
-    expected_revision: int | None
+    expected_revision: int | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -52,38 +52,47 @@ class Stored:
     body: str
 
 
-def lock_project(connection: Connection) -> int:
-    """Return the project revision, and keep all other writers out until the transaction ends."""
-    return int(connection.execute(select(project_state.c.revision).with_for_update()).scalar_one())
-
-
-def write_batch(connection: Connection, batch: Batch, acceptance: Acceptance) -> int:
-    """Write a batch, all but its history; return the project revision it makes.
+def accept(connection: Connection, batch: Batch, acceptance: Acceptance, now: Callable[[], str]) -> int:
+    """Write a batch and its history; return the project revision it makes. ``now`` gives the time as UTC ISO text.
 
     Raises ConflictError when somebody else changed the same documents, DocumentError when the documents do not fit
-    the project.
+    the project. The transaction must then be rolled back.
     """
-    revision = lock_project(connection)
-    if acceptance.expected_revision not in (None, revision):
-        raise ConflictError(
-            f"the project went on from revision {acceptance.expected_revision} to {revision} "
-            f"since it was read, last {last_change(connection)}",
-            hint="read it again and repeat the change",
-        )
+    if not acceptance.by.strip():
+        raise DocumentError("nobody is named who accepts the changes")
+    revision = _lock(connection, acceptance.expected_revision) + 1
     stored = _stored(connection, batch.edits)
     for edit in batch.edits:
         _guard(connection, edit, stored.get(edit.key))
     keys = _keys(connection, batch.edits, stored)
     targets = resolve(connection, batch.edits, keys)
-    _write_documents(connection, batch.edits, keys, targets, revision + 1)
+    _write_documents(connection, batch.edits, keys, targets, revision)
     check_no_cycles(connection, batch.edits)
-    _remove_documents(connection, batch.edits, keys, revision + 1)
+    _remove_documents(connection, batch.edits, keys, revision)
     _write_attachments(connection, batch, keys)
-    return revision + 1
+    _write_history(connection, batch.edits, stored, revision, acceptance, now())
+    return revision
 
 
-def write_history(
-    connection: Connection, edits: Sequence[Edit], revision: int, acceptance: Acceptance, at: str
+def _lock(connection: Connection, expected: int | None) -> int:
+    """Return the project revision, and keep all other writers out until the transaction ends."""
+    revision = int(connection.execute(select(project_state.c.revision).with_for_update()).scalar_one())
+    if expected not in (None, revision):
+        raise ConflictError(
+            f"the project went on from revision {expected} to {revision} since it was read, "
+            f"last {last_change(connection)}",
+            hint="read it again and repeat the change",
+        )
+    return revision
+
+
+def _write_history(
+    connection: Connection,
+    edits: Sequence[Edit],
+    stored: Mapping[Key, Stored],
+    revision: int,
+    acceptance: Acceptance,
+    at: str,
 ) -> None:
     """Write one row a change and move the project to ``revision``."""
     first = _next_key(connection, history)
@@ -92,7 +101,7 @@ def write_history(
             "pk": first + number,
             "project_revision": revision,
             "at": at,
-            "by": acceptance.by,
+            "by": acceptance.by.strip(),
             "reason": edit.change.reason or acceptance.reason,
             "noun": edit.noun.name,
             "code": edit.code,
@@ -100,7 +109,7 @@ def write_history(
             "action": edit.change.action,
             "base_revision": edit.change.base_revision,
             "fields": fields_text(edit.change),
-            "before": edit.change.before,
+            "before": stored[edit.key].body if edit.key in stored else None,
             "after": edit.body,
         }
         for number, edit in enumerate(edits)
@@ -231,17 +240,15 @@ def _write_links(
 def _remove_documents(
     connection: Connection, edits: Sequence[Edit], keys: Mapping[Key, int], revision: int
 ) -> None:
-    removed: dict[str, list[int]] = defaultdict(list)
+    removed: dict[str, list[dict[str, int]]] = defaultdict(list)
     for edit in edits:
         if edit.document is None:
-            removed[edit.noun.name].append(keys[edit.key])
-    for noun, pks in removed.items():
+            removed[edit.noun.name].append({"changed_pk": keys[edit.key]})
+    for noun, rows in removed.items():
         table = TABLES[noun]
-        connection.execute(
-            update(table).where(table.c.pk.in_(pks)).values(removed_at=revision, changed_at=revision)
-        )
-    if removed:
-        check_nothing_left_pointing(connection, removed)
+        tombstone = update(table).where(table.c.pk == bindparam("changed_pk"))
+        connection.execute(tombstone.values(removed_at=revision, changed_at=revision), rows)
+    check_nothing_left_pointing(connection, removed)
 
 
 def _write_attachments(connection: Connection, batch: Batch, keys: Mapping[Key, int]) -> None:

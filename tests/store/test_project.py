@@ -120,6 +120,14 @@ def test_an_edit_changes_the_document_and_its_links(store: ProjectStore) -> None
     assert store.load().find(Block, "PA") is None
 
 
+def test_the_project_document_is_edited_but_never_added_or_removed(store: ProjectStore) -> None:
+    store.apply([editing(a_project(), name="Other")], by=ME)
+    assert store.load().project.name == "Other"
+    for change in (removing(a_project(name="Other")), *adding(a_project(id="second"))):
+        with pytest.raises(DocumentError, match="one project document"):
+            store.apply([change], by=ME)
+
+
 def test_no_changes_leave_the_revision_alone(store: ProjectStore) -> None:
     assert store.apply([], by=ME) == 1
     assert store.history() == store.history()[:1]

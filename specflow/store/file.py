@@ -1,0 +1,180 @@
+"""A project in one SQLite file."""
+
+from __future__ import annotations
+
+import sqlite3
+from collections.abc import Iterator
+from contextlib import AbstractContextManager, closing, contextmanager, suppress
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from specflow.errors import StoreError
+from specflow.store.faults import translated
+from specflow.store.place import PATIENCE, Run
+
+if TYPE_CHECKING:
+    from sqlalchemy import Connection
+
+#: Marks a SQLite file as ours ("SPFL"), so that another program's database is not taken for a project.
+APPLICATION_ID = 0x5350464C
+
+_HEADER = b"SQLite format 3\0"
+
+
+@contextmanager
+def new_file(path: Path) -> Iterator[None]:
+    """Create an empty project file for the block to fill; delete it when the block raises.
+
+    Raises StoreError when there is a file of this name already, or none can be created.
+    """
+    try:
+        path.touch(exist_ok=False)
+    except FileExistsError:
+        raise StoreError(
+            "there is a file of this name already", where=str(path), hint="name another one"
+        ) from None
+    except OSError as error:
+        raise StoreError(f"cannot be created: {error.strerror}", where=str(path)) from None
+    try:
+        with translated(str(path)):
+            with closing(sqlite3.connect(path)) as connection:
+                connection.execute(f"PRAGMA application_id = {APPLICATION_ID}")
+                connection.execute("PRAGMA journal_mode = WAL")
+            yield
+    except BaseException:
+        for suffix in ("", "-wal", "-shm", "-journal"):
+            Path(f"{path}{suffix}").unlink(missing_ok=True)
+        raise
+
+
+class ProjectFile:
+    """A SQLite file, ``*.specflow``."""
+
+    def __init__(self, path: Path, *, read_only: bool = False, patience: float = PATIENCE) -> None:
+        self.path = path
+        self.read_only = read_only
+        self.patience = patience
+        self._written = False
+
+    @property
+    def name(self) -> str:
+        """The path."""
+        return str(self.path)
+
+    @property
+    def copies(self) -> Path:
+        """The path without its suffix: copies go beside the file."""
+        return self.path.with_suffix("")
+
+    def check(self) -> None:
+        """Raise StoreError when the file is missing, empty or no database of this program."""
+        try:
+            with self.path.open("rb") as file:
+                header = file.read(len(_HEADER))
+        except FileNotFoundError:
+            raise StoreError(
+                "there is no such project", where=self.name, hint="check the path, or create it"
+            ) from None
+        except OSError as error:
+            raise StoreError(f"cannot be opened: {error.strerror}", where=self.name) from None
+        if not header:
+            raise StoreError(
+                "the file is empty: its creation was interrupted",
+                where=self.name,
+                hint="delete it and create it again",
+            )
+        with translated(self.name), self.reading() as run:
+            known = header == _HEADER and next(iter(run("PRAGMA application_id")))[0] == APPLICATION_ID
+        if not known:
+            raise StoreError("not a specflow project", where=self.name, hint="name a *.specflow file")
+
+    def new(self) -> AbstractContextManager[None]:
+        """Create the file for the block to fill."""
+        return new_file(self.path)
+
+    def connect(self) -> sqlite3.Connection:
+        """Open the file; it must exist. Transactions are begun by hand (``isolation_level`` None)."""
+        connection = self._connect("mode=ro" if self.read_only else "mode=rw")
+        try:
+            connection.execute("PRAGMA schema_version")
+        except sqlite3.OperationalError as error:
+            connection.close()
+            # A database in WAL mode needs its folder writable even to be read, unless nothing is left in the log.
+            if not _cannot_write(error) or Path(f"{self.path}-wal").exists():
+                raise
+            return self._connect("mode=ro&immutable=1")
+        except BaseException:
+            connection.close()
+            raise
+        return connection
+
+    def _connect(self, how: str) -> sqlite3.Connection:
+        return sqlite3.connect(
+            f"{self.path.absolute().as_uri()}?{how}",
+            uri=True,
+            timeout=self.patience,
+            isolation_level=None,
+            check_same_thread=False,
+        )
+
+    @contextmanager
+    def reading(self) -> Iterator[Run]:
+        """Open a connection to read with."""
+        with closing(self.connect()) as connection:
+            yield connection.execute
+
+    def querying(self) -> AbstractContextManager[Connection]:
+        """Open a transaction that only reads."""
+        return self._transaction("BEGIN")
+
+    def writing(self) -> AbstractContextManager[Connection]:
+        """Open a write transaction, with foreign keys on and the lock taken at once."""
+        self._written = True
+        return self._transaction("BEGIN IMMEDIATE")
+
+    @contextmanager
+    def migrating(self) -> Iterator[Connection]:
+        """Open a write transaction with foreign keys off: rebuilding a table with them on deletes its children."""
+        self._written = True
+        with self._transaction("BEGIN IMMEDIATE", foreign_keys="OFF") as connection:
+            yield connection
+            broken = connection.exec_driver_sql("PRAGMA foreign_key_check").fetchall()
+            if broken:
+                raise StoreError(
+                    f"{len(broken)} links lead nowhere after the change of schema (first in {broken[0][0]})",
+                    where=self.name,
+                    hint="nothing was changed; report this with the file",
+                )
+
+    def _transaction(self, begin: str, *, foreign_keys: str = "ON") -> AbstractContextManager[Connection]:
+        from sqlalchemy import NullPool, create_engine, event
+
+        engine = create_engine("sqlite://", creator=self.connect, poolclass=NullPool)
+
+        @event.listens_for(engine, "connect")
+        def set_up(connection: sqlite3.Connection, _record: object) -> None:
+            connection.execute(f"PRAGMA foreign_keys = {foreign_keys}")
+
+        @event.listens_for(engine, "begin")
+        def start(connection: Connection) -> None:
+            connection.exec_driver_sql(
+                begin
+            )  # the driver would begin late, and by reading: that loses updates
+
+        return engine.begin()
+
+    def copy_to(self, target: Path) -> None:
+        """Copy by SQLite's backup, which sees the log too; a plain copy of an open file would not."""
+        with new_file(target), closing(self.connect()) as source, closing(sqlite3.connect(target)) as copy:
+            source.backup(copy)
+
+    def close(self) -> None:
+        """Move what was written from the log into the file itself, so that the one file is the whole project."""
+        if self._written:
+            with suppress(sqlite3.OperationalError), closing(self.connect()) as connection:
+                connection.execute("PRAGMA wal_checkpoint(TRUNCATE)").fetchall()
+            self._written = False
+
+
+def _cannot_write(error: sqlite3.OperationalError) -> bool:
+    return error.sqlite_errorname.startswith(("SQLITE_CANTOPEN", "SQLITE_READONLY"))
