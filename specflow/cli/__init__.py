@@ -1,4 +1,4 @@
-"""The command line: one file a command, listed here; ``console.py`` owns stdout, stderr and exit codes.
+"""The command line: one file a command, listed in ``commands.py``; ``console.py`` owns stdout, stderr and exit codes.
 
 A command reads its options, calls one workflow and prints what comes back. It computes nothing and loops over no
 domain objects. Heavy imports happen inside the commands, because ``specflow --help`` has to be instant.
@@ -10,60 +10,42 @@ import sys
 
 import typer
 
-from specflow.cli import (
-    attach,
-    browse,
-    check,
-    demo,
-    export,
-    history,
-    init,
-    load,
-    rules,
-    status,
-    trace,
-)
+from specflow.cli.commands import HELP_NAMES, CommandGroup
 from specflow.cli.console import run
 
-COMMANDS = (
-    ("init", init.init),
-    ("load", load.load),
-    ("attach", attach.attach),
-    ("status", status.status),
-    ("check", check.check),
-    ("trace", trace.trace),
-    ("export", export.export),
-    ("browse", browse.browse),
-    ("rules", rules.rules),
-    ("history", history.history),
-    ("demo", demo.demo),
-)
+
+TAGLINE = "Which limit is proved, at which condition, by which number? From radio specification to evidence."
 
 
 def build() -> typer.Typer:
     """Return the application with all commands."""
     app = typer.Typer(
         name="specflow",
-        help="Which limit is proved, at which condition, by which number? From radio specification to evidence.",
+        cls=CommandGroup,
         no_args_is_help=True,
         add_completion=False,
         pretty_exceptions_enable=False,
-        context_settings={"help_option_names": ["-h", "--help"]},
+        rich_markup_mode=None,
+        context_settings=HELP_NAMES,
     )
-    for name, command in COMMANDS:
-        app.command(name)(command)
-    app.callback()(_version_option)
+    app.callback(help=TAGLINE)(_version_option)
     return app
 
 
-def _version_option(
-    version: bool = typer.Option(False, "--version", help="Print the version and end.", is_eager=True),
-) -> None:
-    if version:
+def _show_version(wanted: bool) -> None:
+    if wanted:
         from specflow import __version__
 
         typer.echo(__version__)
         raise typer.Exit
+
+
+def _version_option(
+    version: bool = typer.Option(
+        False, "--version", help="Print the version and end.", is_eager=True, callback=_show_version
+    ),
+) -> None:
+    """Options before a command."""
 
 
 def main() -> None:
