@@ -58,7 +58,7 @@ def evaluate_limit(limit: Limit, context: LimitContext, *, with_test_tolerance: 
     if limit.rounding is not None:
         bounds = rounded(bounds, limit.rounding)
     if with_test_tolerance and limit.test_tolerance is not None:
-        bounds = relaxed(bounds, limit.test_tolerance)
+        bounds = _relaxed(bounds, limit.test_tolerance, context)
     return bounds
 
 
@@ -239,12 +239,15 @@ def rounded(bounds: Bounds, rounding: Rounding) -> Bounds:
     return replace(bounds, lower=to_step(bounds.lower), upper=to_step(bounds.upper))
 
 
-def relaxed(bounds: Bounds, tolerance: TestTolerance) -> Bounds:
+def _relaxed(bounds: Bounds, tolerance: TestTolerance, context: LimitContext) -> Bounds:
     """Relax the bounds by a test tolerance: lower bounds go down, upper bounds go up."""
     if tolerance.place == "stimulus" or not bounds.unit:
         return bounds
-    own, target = tolerance.amount, difference_unit(bounds.unit)
-    amount = float(convert_to(np.array([own.value]), own.unit, target)[0])
+    inputs = Inputs(context.columns, context.declared)
+    try:
+        amount = number_in(tolerance.amount, difference_unit(bounds.unit), inputs)
+    except ExpressionError as error:
+        return _unknown(bounds.unit, f"test tolerance: {error.message}")
     lower = None if bounds.lower is None else bounds.lower - amount
     upper = None if bounds.upper is None else bounds.upper + amount
-    return replace(bounds, lower=lower, upper=upper)
+    return _settled(replace(bounds, lower=lower, upper=upper), inputs)

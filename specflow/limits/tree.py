@@ -102,7 +102,8 @@ def _of_mask(mask: Mask) -> Iterator[Expression]:
 
 def limit_inputs(limit: Limit) -> frozenset[str]:
     """Return the names of the conditions, axes and declared values that the evaluation of a limit needs."""
-    return tree_names(limit.tree)
+    names = tree_names(limit.tree)
+    return names if limit.test_tolerance is None else names | expression_names(limit.test_tolerance.amount)
 
 
 def tree_names(node: LimitNode) -> frozenset[str]:

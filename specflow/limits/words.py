@@ -62,7 +62,7 @@ def limit_words(limit: Limit, parameter: Parameter | None = None) -> str:
         )
     if limit.test_tolerance is not None:
         place = "the stimulus" if limit.test_tolerance.place == "stimulus" else "the limit"
-        parts.append(f"test tolerance {_amount(limit.test_tolerance.amount)} on {place}, kept apart")
+        parts.append(f"test tolerance {expression_words(limit.test_tolerance.amount)} on {place}, kept apart")
     if limit.state is not LimitState.FIRM and not isinstance(limit.tree, Undefined):
         parts.append(_STATE[limit.state])
     text = "; ".join(parts)

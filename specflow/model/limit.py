@@ -284,7 +284,10 @@ class Rounding(Document):
 
 
 class TestTolerance(Document):
-    """What a test may relax the limit by, kept apart from the core limit; or what it adds to the stimulus."""
+    """What a test may relax the limit by, kept apart from the core limit; or what it adds to the stimulus.
+
+    One amount: where it depends on conditions, each range of conditions is a requirement of its own.
+    """
 
     __test__ = False
 

@@ -49,9 +49,9 @@ def test_difference_is_empty_for_equal_meaning_only(one: LimitNode, two: LimitNo
 
 
 _WORDS = (
-    ">= <= < > ± +/- +2/-3 -6..4 .. – - − + * / ^ ( ) [ ] { } , ; : % dBm dB MHz dBm/MHz max min max( min( log10( if "
-    "in by cases( mask( looser( sum( when otherwise: TBD TBR (TBR) at 50 % CDF worst mean over with exceptions rounded to "
-    "test tolerance P_rated band == 'n257' 1 2.5 3,2 1,234 1e999 between and or not from \u00a0 \u0661 ² µ"
+    ">= <= < > ± +/- +2/-3 -6..4 .. – - − + * / ^ ( ) [ ] { } , ; : % dBm dB MHz dBm/MHz max min max( min( log10( "
+    "if in by cases( mask( looser( sum( when otherwise: TBD TBR (TBR) at 50 % CDF worst mean over with exceptions "
+    "rounded to test tolerance P_rated band == 'n257' 1 2.5 3,2 1,234 1e999 between and or not from \u00a0 \u0661 ² µ"
 )
 _PIECES = st.sampled_from(_WORDS.split(" "))
 
