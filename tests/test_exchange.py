@@ -63,6 +63,11 @@ def test_negative_zero_becomes_zero_and_nul_is_stripped() -> None:
     assert read.note == "ab"
 
 
+def test_text_that_only_looks_like_an_escape_is_kept() -> None:
+    block = a_block(name=r"C:\u0000 and -0.0")
+    assert read_text("block", payload_text(block)) == block
+
+
 @pytest.mark.parametrize("number", ["NaN", "Infinity", "-Infinity"])
 def test_what_is_no_number_is_refused_in_texts(number: str) -> None:
     text = payload_text(DeclaredValue(id="D", name="P", value=1.5, unit="dBm")).replace("1.5", number)

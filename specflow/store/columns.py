@@ -124,7 +124,7 @@ def _integers(role: str, name: str, numbers: NDArray[Any], labels: str | None = 
 
 
 def _words(role: str, name: str, words: TextColumn) -> PackedColumn:
-    labels = json.dumps([label.replace("\0", "") for label in words.labels], ensure_ascii=False)
+    labels = json.dumps([label.replace("\0", "") for label in words.labels])
     return _integers(role, name, words.codes, labels)
 
 

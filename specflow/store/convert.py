@@ -115,6 +115,4 @@ def link_values(edit: Edit, field: str, targets: Mapping[Key, int], pk: int) -> 
 
 def fields_text(change: Change) -> str:
     """Return the differing fields of a change as JSON text."""
-    return json.dumps([field.model_dump() for field in change.fields], ensure_ascii=False).replace(
-        "\\u0000", ""
-    )
+    return json.dumps([field.model_dump() for field in change.fields], ensure_ascii=False)

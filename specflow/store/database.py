@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Any
 
 from specflow.errors import StoreError
 from specflow.store.faults import translated
-from specflow.store.file import new_file
+from specflow.store.file import APPLICATION_ID, new_file
 from specflow.store.place import PATIENCE, Run
 
 if TYPE_CHECKING:
@@ -89,7 +89,12 @@ class ProjectDatabase:
             connection.exec_driver_sql(f"SET LOCAL lock_timeout = {int(self.patience * 1000)}")
             yield connection
 
-    migrating = writing
+    @contextmanager
+    def migrating(self) -> Iterator[Connection]:
+        """Open a write transaction that keeps everybody else from changing the schema too."""
+        with self.writing() as connection:
+            connection.exec_driver_sql(f"SELECT pg_advisory_xact_lock({APPLICATION_ID})")
+            yield connection
 
     def copy_to(self, target: Path) -> None:
         """Copy table by table, as they are here: the schema may be older than this program's."""

@@ -58,7 +58,7 @@ def accept(connection: Connection, batch: Batch, acceptance: Acceptance, now: Ca
     Raises ConflictError when somebody else changed the same documents, DocumentError when the documents do not fit
     the project. The transaction must then be rolled back.
     """
-    if not acceptance.by.strip():
+    if not _plain(acceptance.by):
         raise DocumentError("nobody is named who accepts the changes")
     revision = _lock(connection, acceptance.expected_revision) + 1
     stored = _stored(connection, batch.edits)
@@ -101,8 +101,8 @@ def _write_history(
             "pk": first + number,
             "project_revision": revision,
             "at": at,
-            "by": acceptance.by.strip(),
-            "reason": edit.change.reason or acceptance.reason,
+            "by": _plain(acceptance.by),
+            "reason": _plain(edit.change.reason or acceptance.reason),
             "noun": edit.noun.name,
             "code": edit.code,
             "code_key": edit.key[1],
@@ -116,6 +116,10 @@ def _write_history(
     ]
     connection.execute(insert(history), rows)
     connection.execute(update(project_state).values(revision=revision))
+
+
+def _plain(words: str) -> str:
+    return words.replace("\0", "").strip()
 
 
 def _stored(connection: Connection, edits: Sequence[Edit]) -> dict[Key, Stored]:

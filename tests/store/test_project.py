@@ -3,6 +3,9 @@
 from __future__ import annotations
 
 import hashlib
+import subprocess
+import sys
+from concurrent.futures import ThreadPoolExecutor
 from datetime import date
 from pathlib import Path
 
@@ -368,3 +371,38 @@ def test_a_snapshot_outlives_its_store(where: str) -> None:
     with create_project(where, a_project(), clock=noon) as store:
         snapshot = filled(store).load()
     assert len(snapshot.load_columns([table.id for table in snapshot.all(EvidenceTable)])) == 1
+
+
+def test_loading_needs_no_mapper(project_file: Path) -> None:
+    with create_project(project_file, a_project(), clock=noon) as store:
+        filled(store)
+    program = """
+import sys
+from specflow.store import open_project
+with open_project(sys.argv[1]) as store:
+    snapshot = store.load()
+    assert len(snapshot.load_columns(["T-1"])) == 1
+print(sorted({"sqlalchemy", "alembic", "psycopg"} & sys.modules.keys()))
+"""
+    ran = subprocess.run(
+        [sys.executable, "-c", program, str(project_file)], capture_output=True, text=True, check=True
+    )
+    assert ran.stdout == "[]\n"
+
+
+def test_several_threads_read_and_write_one_store(store: ProjectStore) -> None:
+    def add(number: int) -> int:
+        revision = store.apply(adding(a_block(f"B-{number}")), by=ME)
+        assert store.load().find(Block, f"B-{number}") is not None
+        return revision
+
+    with ThreadPoolExecutor(4) as threads:
+        revisions = list(threads.map(add, range(12)))
+    assert sorted(revisions) == list(range(2, 14))
+
+
+def test_nul_in_names_and_reasons_is_stripped(store: ProjectStore) -> None:
+    store.apply(adding(a_block(note="a\0b")), by="An\0n", reason="be\0cause")
+    (entry,) = store.history("block")
+    assert (entry.by, entry.reason) == ("Ann", "because")
+    assert store.load().blocks[0].note == "ab"
