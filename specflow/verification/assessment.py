@@ -14,16 +14,16 @@ from specflow.conditions.points import Points
 from specflow.limits import LimitContext, evaluate_limit
 from specflow.limits.tree import tree_names
 from specflow.model.limit import Limit
-from specflow.model.parameter import QuantityIdentity
 from specflow.model.requirement import Activity, Requirement
 from specflow.model.verdict import Conflict, Mismatch, RecordRef, Standing
 from specflow.units import format_unit, parse_unit, tolerance_unit
 from specflow.verification.activity import ActivityOutcome, summarise
-from specflow.verification.bandwidths import states_bandwidth
+from specflow.verification.alternatives import Member, members_of, put_together
 from specflow.verification.conflicts import conflicts
 from specflow.verification.credit import credit
-from specflow.verification.points import Bench, item_points
-from specflow.verification.readings import Judgement, Readings, judge, limit_columns, serving
+from specflow.verification.judging import Judging
+from specflow.verification.points import Bench, ItemPoints, item_points
+from specflow.verification.readings import Readings, limit_columns, readings_of, serving
 from specflow.verification.records import Records
 from specflow.verification.standing import STANDINGS
 from specflow.verification.unmatched import serving_nothing
@@ -56,48 +56,71 @@ class Ground:
     records: Records
     readings: Readings
     nothing_required: NDArray[np.bool_] | None
+    together: bool = False
 
 
 def assess(requirement: Requirement, activities: Sequence[Activity], workspace: Workspace) -> Assessment:
     """Judge all evidence of a requirement. ConditionsError when its points cannot be had."""
     points = workspace.points(requirement)
-    limit = requirement.limit
-    unit = difference_unit(limit.unit)
-    ground = lay_ground(requirement, limit, requirement.quantity, points, workspace)
-    named = [item.id for name in requirement.provers.items if (item := workspace.item(name)) is not None]
+    members = members_of(requirement, workspace.dictionary)
+    grounds = [lay_ground(requirement, member, points, workspace) for member in members]
+    named = [str(getattr(workspace.item(name), "id", name)) for name in requirement.provers.items]
     outcomes: list[ActivityOutcome] = []
-    found: list[Conflict] = []
+    benches: list[Bench] = []
+    shown = 0
     for activity in activities:
-        bench = _bench(requirement, activity, ground, workspace)
-        items = item_points(bench, together=requirement.provers.may_complete_each_other)
-        why = (*ground.readings.why, *bench.credit.why)
+        own = [_bench(requirement, activity, ground, workspace) for ground in grounds]
+        items, shown = _items(requirement, own, points.size)
+        unit = difference_unit(members[shown].limit.unit)
+        why = [text for bench in own for text in (*bench.readings.why, *bench.credit.why)]
         outcomes.append(summarise(activity, requirement.provers, points, items, unit, named, why))
-        if not found:
-            found = list(conflicts(bench, limit.unit, unit, workspace.policy))
+        benches = benches or own
+    return _assessment(points, members[shown].limit.unit, outcomes, grounds, benches, workspace)
+
+
+def _items(requirement: Requirement, benches: Sequence[Bench], n: int) -> tuple[Sequence[ItemPoints], int]:
+    """Return the points of every item under the whole limit, and which member of its alternatives is shown."""
+    together = requirement.provers.may_complete_each_other
+    if len(benches) == 1:
+        return item_points(benches[0], together=together), 0
+    return put_together(requirement.limit, [item_points(bench, together=together) for bench in benches], n)
+
+
+def _assessment(
+    points: Points,
+    unit: str,
+    outcomes: Sequence[ActivityOutcome],
+    grounds: Sequence[Ground],
+    benches: Sequence[Bench],
+    workspace: Workspace,
+) -> Assessment:
+    standing: Counter[Standing] = Counter()
+    for ground in grounds:
+        standing.update(_standing(ground))
+    tolerance = difference_unit(unit)
     return Assessment(
         points,
-        unit,
+        tolerance,
         tuple(outcomes),
-        _standing(ground),
-        tuple(found),
-        (*ground.records.mismatches, *_note_served(ground, workspace)),
-        _ambiguous(ground),
-        (*ground.records.notes, *ground.matching.notes),
+        dict(standing),
+        tuple(one for bench in benches for one in conflicts(bench, unit, tolerance, workspace.policy)),
+        _mismatches(grounds, workspace),
+        tuple(one for ground in grounds for one in _ambiguous(ground)),
+        tuple(dict.fromkeys(note for one in grounds for note in (*one.records.notes, *one.matching.notes))),
     )
 
 
-def lay_ground(
-    requirement: Requirement, limit: Limit, quantity: QuantityIdentity, points: Points, workspace: Workspace
-) -> Ground:
+def lay_ground(requirement: Requirement, member: Member, points: Points, workspace: Workspace) -> Ground:
     """Gather the records of one limit, match and judge them."""
-    records = workspace.records(requirement, quantity, limit.unit)
-    matching = workspace.matching(points, records)
-    record, point = serving(records, matching)
-    columns = limit_columns(limit, points, records.conditions, record, point)
-    context = LimitContext(columns, workspace.declared, len(record))
-    judgement = Judgement(limit, limit.unit, requirement.decision_rule, workspace.policy, context)
-    readings = judge(records, record, point, judgement)
-    return Ground(points, matching, records, readings, _nothing_required(limit, points, workspace))
+    records = workspace.records(requirement, member.want)
+    conditions = workspace.conditions_of(requirement, records)
+    matching = workspace.matching(points, conditions)
+    served = readings_of(records, *serving(records, matching))
+    judging = Judging(requirement, member.limit, points, records, conditions, workspace)
+    readings, together = judging.readings(served)
+    return Ground(
+        points, matching, records, readings, _nothing_required(member.limit, points, workspace), together
+    )
 
 
 def _nothing_required(limit: Limit, points: Points, workspace: Workspace) -> NDArray[np.bool_] | None:
@@ -121,6 +144,7 @@ def _bench(requirement: Requirement, activity: Activity, ground: Ground, workspa
         weights,
         ground.nothing_required,
         requirement.decision_rule.conditional_pass_counts,
+        ground.together,
     )
 
 
@@ -141,14 +165,21 @@ def _standing(ground: Ground) -> Mapping[Standing, int]:
     return {standing: count for standing, count in counts.items() if count}
 
 
-def _note_served(ground: Ground, workspace: Workspace) -> tuple[Mismatch, ...]:
-    """Remember which tables served; return the sources that did not."""
-    idle = serving_nothing(ground.points, ground.records, ground.readings.record)
-    without = {(mismatch.table, mismatch.column) for mismatch in idle}
-    for source in ground.records.sources:
-        if (source.table.id, source.column.name) not in without:
-            workspace.served.add(source.table.id)
-    return idle
+def _mismatches(grounds: Sequence[Ground], workspace: Workspace) -> tuple[Mismatch, ...]:
+    """Return what could not be compared or serves nothing, and remember which tables served.
+
+    A column that serves one of several alternatives is no mismatch for the others.
+    """
+    found: list[Mismatch] = []
+    served: set[tuple[str, str]] = set()
+    for ground in grounds:
+        idle = serving_nothing(ground.points, ground.records, ground.matching.record)
+        without = {(mismatch.table, mismatch.column) for mismatch in idle}
+        named = {(source.table.id, source.column.name) for source in ground.records.sources}
+        served |= named - without
+        found += [*ground.records.mismatches, *idle]
+    workspace.served.update(table for table, _ in served)
+    return tuple(dict.fromkeys(one for one in found if (one.table, one.column) not in served))
 
 
 def _ambiguous(ground: Ground) -> tuple[RecordRef, ...]:
@@ -156,6 +187,3 @@ def _ambiguous(ground: Ground) -> tuple[RecordRef, ...]:
     if ground.records.usable is not None and len(rows):
         rows = rows[ground.records.usable[rows]]
     return tuple(ground.records.reference(int(row)) for row in rows[:MOST_NAMED])
-
-
-__all__ = ["Assessment", "Ground", "assess", "difference_unit", "lay_ground", "states_bandwidth"]

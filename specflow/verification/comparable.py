@@ -85,16 +85,27 @@ class Fit:
         return np.maximum(up, down)
 
 
+@dataclass(frozen=True, slots=True)
+class Wanted:
+    """The quantity a limit is on, and its unit.
+
+    ``any_bandwidth``: the limit itself states its bandwidths, record by record. ``any_identity``: a limit on another
+    quantity by name, which says nothing about its plane or statistic.
+    """
+
+    quantity: QuantityIdentity
+    unit: str
+    any_bandwidth: bool = False
+    any_identity: bool = False
+
+
 def fit(
-    table: EvidenceTable,
-    column: ValueColumn,
-    wanted: QuantityIdentity,
-    unit: str,
-    block: Block | None,
-    parameter: Parameter | None,
+    table: EvidenceTable, column: ValueColumn, want: Wanted, block: Block | None, parameter: Parameter | None
 ) -> Fit | Mismatch:
-    """Return how the values of a column are compared with a limit on ``wanted`` in ``unit``, or why they may not be."""
-    found = column.quantity
+    """Return how the values of a column are compared with a limit on what is wanted, or why they may not be."""
+    if want.any_identity:
+        want = replace(want, quantity=column.quantity)
+    found, wanted, unit = column.quantity, want.quantity, want.unit
     for part in ("statistic", "polarisation"):
         if _plain(getattr(found, part)) != _plain(getattr(wanted, part)):
             return _differs(table, column, part, getattr(found, part), getattr(wanted, part))
@@ -109,7 +120,7 @@ def fit(
     moved = _between_planes(table, column, wanted, block, target)
     if isinstance(moved, Mismatch):
         return moved
-    scaled = _between_bandwidths(table, column, wanted, source, target)
+    scaled = Shift() if want.any_bandwidth else _between_bandwidths(table, column, wanted, source, target)
     if isinstance(scaled, Mismatch):
         return scaled
     notes = () if convert.is_identity else (convert.words,)

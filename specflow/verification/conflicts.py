@@ -8,12 +8,13 @@ range only readings at one value are compared, and other conditions that both st
 from __future__ import annotations
 
 from collections.abc import Iterator
+from itertools import islice
 
 import numpy as np
 from numpy.typing import NDArray
 
 from specflow.conditions.words import point_words
-from specflow.model.columns import UNSTATED, Columns
+from specflow.model.columns import UNSTATED
 from specflow.model.project import Policy
 from specflow.model.verdict import Conflict
 from specflow.units import parse_unit
@@ -22,8 +23,8 @@ from specflow.verification.standing import ACCEPTED
 
 Floats = NDArray[np.float64]
 
-#: Groups looked into one by one; a project with more has said enough.
-MOST_CONFLICTS = 100
+#: The most that are named for one requirement: by then nobody trusts its evidence.
+MOST_CONFLICTS = 20
 _CLOSE = 1e-6
 
 
@@ -38,7 +39,7 @@ def conflicts(bench: Bench, unit: str, tolerance_unit: str, policy: Policy) -> t
     found = (
         _worst_pair(bench, group, allowed) for group in _suspicious(bench, allowed, np.flatnonzero(keep))
     )
-    worst = [pair for pair in found if pair is not None][:MOST_CONFLICTS]
+    worst = islice((pair for pair in found if pair is not None), MOST_CONFLICTS)
     return tuple(_conflict(bench, first, second, allowed, tolerance_unit) for first, second in worst)
 
 
@@ -86,21 +87,21 @@ def _along(bench: Bench, keep: NDArray[np.intp]) -> Floats:
 
 def _worst_pair(bench: Bench, group: NDArray[np.intp], allowed: Floats) -> tuple[int, int] | None:
     """Return the pair of a group that differs most beyond what is allowed, under conditions that agree."""
-    values = bench.readings.low[group]
-    beyond = np.abs(values[:, None] - values[None, :]) - np.hypot(
-        allowed[group][:, None], allowed[group][None, :]
-    )
-    rows, columns = np.nonzero(np.triu(beyond > 0, 1))
-    for place in np.argsort(-beyond[rows, columns], kind="stable"):
-        first, second = int(group[rows[place]]), int(group[columns[place]])
-        records = bench.readings.record
-        if _same_conditions(bench, bench.records.conditions, int(records[first]), int(records[second])):
-            return first, second
-    return None
+    values, spread = bench.readings.low[group], allowed[group]
+    beyond = np.abs(values[:, None] - values[None, :]) - np.hypot(spread[:, None], spread[None, :])
+    records = bench.readings.record
+    while True:
+        first, second = divmod(int(beyond.argmax()), len(group))
+        if beyond[first, second] <= 0:
+            return None
+        if _same_conditions(bench, int(records[group[first]]), int(records[group[second]])):
+            return int(group[first]), int(group[second])
+        beyond[first, second] = beyond[second, first] = -np.inf
 
 
-def _same_conditions(bench: Bench, conditions: Columns, first: int, second: int) -> bool:
+def _same_conditions(bench: Bench, first: int, second: int) -> bool:
     """Whether two readings agree in every condition that both state and that the points do not compare already."""
+    conditions = bench.records.conditions
     compared = {name for axis in bench.points.axes for name in axis.names}
     for name, values in conditions.numeric.items():
         a, b = float(values[first]), float(values[second])

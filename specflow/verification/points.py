@@ -34,7 +34,11 @@ ALL_ITEMS = "all items"
 
 @dataclass(frozen=True, slots=True)
 class Bench:
-    """Everything known at the required points of one activity, before items are told apart."""
+    """Everything known at the required points of one activity, before items are told apart.
+
+    ``nothing_required`` (n,): points at which the limit asks for nothing. ``together``: the limit is on all items at
+    once.
+    """
 
     points: Points
     matching: Matching
@@ -43,6 +47,7 @@ class Bench:
     credit: Credit
     nothing_required: Flags | None = None
     conditional_pass_counts: bool = True
+    together: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -71,7 +76,7 @@ class ItemPoints:
 
 def item_points(bench: Bench, *, together: bool) -> list[ItemPoints]:
     """Return the state of every point for each item that has evidence (for all as one item with ``together``)."""
-    names, pair, item = _by_item(bench, together)
+    names, pair, item = _by_item(bench, together or bench.together)
     counts = _counting(bench, pair, item)
     governing, group = _governing(bench, pair, item, counts)
     found = []

@@ -72,6 +72,21 @@ class Readings:
 
 
 @dataclass(frozen=True, slots=True)
+class Served:
+    """Pairs (p,) before they are judged: which reading serves which point, its interval and standard uncertainty."""
+
+    record: Rows
+    point: Rows
+    low: Array
+    high: Array
+    u: Array
+
+    def take(self, kept: NDArray[np.bool_]) -> Served:
+        """Return the pairs marked."""
+        return Served(self.record[kept], self.point[kept], self.low[kept], self.high[kept], self.u[kept])
+
+
+@dataclass(frozen=True, slots=True)
 class Judgement:
     """What readings are held against: the limit, the rule, the house's thresholds, the declared values."""
 
@@ -122,13 +137,19 @@ def _fixed(points: Points, name: str) -> bool:
     return name in low.numeric and (low is high or np.array_equal(low.numeric[name], high.numeric[name]))
 
 
-def judge(records: Records, record: Rows, point: Rows, judgement: Judgement) -> Readings:
-    """Judge the pairs; the context of the judgement has one row for each, or the limit needs no input."""
-    bounds = evaluate_limit(judgement.limit, judgement.context)
+def readings_of(records: Records, record: Rows, point: Rows) -> Served:
+    """Return the readings that serve points, as recorded."""
     low = records.low[record]
     high = low if records.high is records.low else records.high[record]
     u = np.full(len(record), np.nan) if records.u is None else records.u[record]
-    low, high, lost = in_bandwidth_of_limit(records, record, low, high, bounds.bandwidth_hz)
+    return Served(record, point, low, high, u)
+
+
+def judge(records: Records, served: Served, judgement: Judgement) -> Readings:
+    """Judge the readings; the context of the judgement has one row for each, or the limit needs no input."""
+    bounds = evaluate_limit(judgement.limit, judgement.context)
+    record, u = served.record, served.u
+    low, high, lost = in_bandwidth_of_limit(records, record, served.low, served.high, bounds.bandwidth_hz)
     seen_low, seen_high, why = _compared(low, high, judgement)
     core = _core(
         bounds, judgement, records.exact if isinstance(records.exact, bool) else records.exact[record]
@@ -147,7 +168,7 @@ def judge(records: Records, record: Rows, point: Rows, judgement: Judgement) -> 
         verdict[:] = Verdict.INCONCLUSIVE
     return Readings(
         record,
-        point,
+        served.point,
         low,
         high,
         u,

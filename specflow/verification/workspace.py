@@ -16,23 +16,24 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.conditions.expand import expand
+from specflow.conditions.maps import unmap_columns
 from specflow.conditions.match import Matching, match
 from specflow.conditions.points import Points
 from specflow.errors import ConditionsError, UnitError
 from specflow.model.base import code_key
 from specflow.model.block import Block, HardwareType, Item
 from specflow.model.columns import Columns, TextColumn
-from specflow.model.conditions import ConditionsSet
+from specflow.model.conditions import ConditionMap, ConditionsSet
 from specflow.model.declared import DeclaredValue
 from specflow.model.evidence import EvidenceColumns, EvidenceFile, FileKind
-from specflow.model.parameter import QuantityIdentity
 from specflow.model.project import Policy
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Snapshot
 from specflow.model.verdict import Mismatch
 from specflow.parameters import Dictionary
 from specflow.units import Quantity, parse_unit
-from specflow.verification.comparable import Fit, fit
+from specflow.verification.comparable import Fit, Wanted, fit
+from specflow.verification.map_choice import MapChoice
 from specflow.verification.records import Held, Records, Source, gather, no_records
 from specflow.verification.stacking import stack
 from specflow.verification.standing import RowStanding, StandingRegister
@@ -52,7 +53,8 @@ class Workspace:
     _points: dict[str, Points] = field(default_factory=dict)
     _matchings: dict[tuple[int, int], tuple[Points, Columns, Matching]] = field(default_factory=dict)
     _stacks: dict[tuple[str, ...], Columns] = field(default_factory=dict)
-    _records: dict[tuple[object, ...], Records] = field(default_factory=dict)
+    _mapped: dict[tuple[int, int], tuple[ConditionMap, Columns, Columns]] = field(default_factory=dict)
+    _records: dict[tuple[str, Wanted], Records] = field(default_factory=dict)
     _items: dict[str, tuple[NDArray[np.int32], tuple[str, ...]]] = field(default_factory=dict)
     _standings: dict[tuple[str, str], RowStanding] = field(default_factory=dict)
     _columns: dict[str, EvidenceColumns] = field(default_factory=dict)
@@ -139,29 +141,45 @@ class Workspace:
             )
         return conditions
 
-    def matching(self, points: Points, records: Records) -> Matching:
+    def matching(self, points: Points, conditions: Columns) -> Matching:
         """Return which record serves which point; shared by all quantities recorded in the same rows."""
-        key = id(points), id(records.conditions)
+        key = id(points), id(conditions)
         known = self._matchings.get(key)
         if known is None:
-            known = self._matchings[key] = points, records.conditions, match(points, records.conditions)
+            known = self._matchings[key] = points, conditions, match(points, conditions)
         return known[2]
 
-    def records(self, requirement: Requirement, quantity: QuantityIdentity, unit: str) -> Records:
-        """Return the readings of a quantity of the requirement's block, in ``unit``; what may not be compared apart."""
-        key = code_key(requirement.block), quantity, unit
+    def conditions_of(self, requirement: Requirement, records: Records) -> Columns:
+        """Return the conditions of the records in the terms of the requirement's set (see ``mapping``)."""
+        how = self.mapping.of_requirement(requirement)
+        if how is None:
+            return records.conditions
+        key = id(how), id(records.conditions)
+        known = self._mapped.get(key)
+        if known is None:
+            known = self._mapped[key] = how, records.conditions, unmap_columns(how, records.conditions)
+        return known[2]
+
+    @cached_property
+    def mapping(self) -> MapChoice:
+        """Which condition map takes the evidence of a requirement to the terms of its conditions set."""
+        return MapChoice.of(self.snapshot)
+
+    def records(self, requirement: Requirement, want: Wanted) -> Records:
+        """Return the readings of a quantity of the requirement's block; what may not be compared apart."""
+        key = code_key(requirement.block), want
         found = self._records.get(key)
         if found is None:
-            found = self._records[key] = self._gathered(requirement.block, quantity, unit)
+            found = self._records[key] = self._gathered(requirement.block, want)
         return found
 
-    def _gathered(self, block_id: str, quantity: QuantityIdentity, unit: str) -> Records:
+    def _gathered(self, block_id: str, want: Wanted) -> Records:
         block = self.snapshot.find(Block, block_id)
-        parameter = self.dictionary.get(quantity.parameter)
+        parameter = self.dictionary.get(want.quantity.parameter)
         fitting: list[tuple[Source, Fit]] = []
         mismatches: list[Mismatch] = []
-        for source in self.sources.get((code_key(block_id), code_key(quantity.parameter)), ()):
-            found = fit(source.table, source.column, quantity, unit, block, parameter)
+        for source in self.sources.get((code_key(block_id), code_key(want.quantity.parameter)), ()):
+            found = fit(source.table, source.column, want, block, parameter)
             if isinstance(found, Mismatch):
                 mismatches.append(found)
             else:

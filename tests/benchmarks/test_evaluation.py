@@ -16,8 +16,8 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from specflow.model.evidence import EvidenceColumns, ValueArrays
 from specflow.model.columns import TextColumn
+from specflow.model.evidence import EvidenceColumns, ValueArrays
 from specflow.model.requirement import DecisionRule, RuleName
 from specflow.model.snapshot import Results, Snapshot
 from specflow.parameters import load_dictionary
@@ -56,8 +56,12 @@ def evidence(per_table: int, seed: int) -> EvidenceColumns:
     )
     values = {}
     for place in range(per_table):
-        low = drawn.normal(22.0, 0.3, rows)
-        values[f"Gain {place}"] = ValueArrays(low, low, drawn.uniform(0.05, 0.2, rows))
+        u = drawn.uniform(0.05, 0.2, rows)
+        truth = drawn.normal(22.0, 0.3, POINTS)[order]
+        low = truth + 0.3 * u * drawn.standard_normal(
+            rows
+        )  # repeats scatter less than U, most of which is systematic
+        values[f"Gain {place}"] = ValueArrays(low, low, u)
     items = TextColumn(drawn.integers(0, 2, rows).astype(np.int32), ("LNA-1", "LNA-2"))
     return EvidenceColumns(conditions, values, np.arange(2, rows + 2, dtype=np.int32), items)
 

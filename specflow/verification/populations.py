@@ -1,0 +1,228 @@
+"""Limits on a statistic of many values: the value that is judged at each point, made from the readings there.
+
+*Worst*: every value must meet the limit. *Mean* of values, of power, of dB or of squares. *Percentile*: over a sphere
+each direction weighs as much as its solid angle. *Tolerance bound* (95/95): one value an item, the worst of it; normal
+population, exact factor. *Exceptions* and allowances: so many values may exceed so far. Uncertainty is taken as common
+to all values of a point (it does not average out), the largest of them.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.errors import ExpressionError
+from specflow.limits import evaluate_condition
+from specflow.limits.tree import side_of
+from specflow.model.columns import Columns
+from specflow.model.limit import (
+    Exceptions,
+    Mean,
+    Percentile,
+    Population,
+    Side,
+    ToleranceBound,
+    Worst,
+)
+from specflow.model.verdict import Verdict
+from specflow.statistics.sphere import grid_weights, percentile
+from specflow.statistics.tolerance import one_sided_factor, two_sided_factor
+from specflow.units import parse_unit
+from specflow.verification.readings import Readings, Served
+from specflow.verification.records import Records
+
+Floats = NDArray[np.float64]
+Rows = NDArray[np.intp]
+
+_ITEM_NAMES = frozenset({"item", "items", "unit", "units", "serial", "sample", "samples"})
+_SPHERE_NAMES = frozenset({"sphere", "direction", "directions", "angle", "angles"})
+
+
+@dataclass(frozen=True, slots=True)
+class Statistic:
+    """The population limit of a requirement: what is judged, over what, and how many values are needed."""
+
+    node: Population
+    unit: str
+    columns: Columns
+    item: NDArray[np.int32]
+
+    @property
+    def over_items(self) -> bool:
+        """Whether the values of all items belong together."""
+        over = {name.casefold() for name in self.node.over}
+        return bool(over & _ITEM_NAMES) or isinstance(self.node.statistic, ToleranceBound)
+
+    @property
+    def over_sphere(self) -> bool:
+        """Whether directions are weighed by solid angle."""
+        return bool({name.casefold() for name in self.node.over} & _SPHERE_NAMES)
+
+
+def condensed(
+    statistic: Statistic, records: Records, served: Served
+) -> tuple[Served, NDArray[np.bool_], str]:
+    """Return one value for each point (and item), which of them come from too few values, and what cannot be computed.
+
+    The record of a value is the one nearest to it on the bad side.
+    """
+    node = statistic.node
+    if node.of is not None:
+        return (
+            served,
+            np.zeros(len(served.record), bool),
+            "a statistic of a formula of several quantities is not computed",
+        )
+    try:
+        served = _where(statistic, served)
+    except ExpressionError as error:
+        return (
+            served,
+            np.zeros(len(served.record), bool),
+            f"which values count cannot be decided: {error.message}",
+        )
+    groups = _groups(statistic, records, served)
+    counts = [_size(statistic, records, served, rows) for rows in groups]
+    if isinstance(node.statistic, Worst | Exceptions):
+        few = np.zeros(len(served.record), bool)
+        for rows, count in zip(groups, counts, strict=True):
+            few[rows] = count < (node.least or 1)
+        return served, few, ""
+    reduce = _reduction(statistic, records)
+    parts = [reduce(served, rows) for rows in groups]
+    few = np.array([count < max(node.least or 1, _fewest(statistic)) for count in counts], bool)
+    return _together(parts, served), few, ""
+
+
+def _where(statistic: Statistic, served: Served) -> Served:
+    if statistic.node.where is None:
+        return served
+    holds, _ = evaluate_condition(statistic.node.where, statistic.columns)
+    return served.take(holds[served.record])
+
+
+def _groups(statistic: Statistic, records: Records, served: Served) -> list[Rows]:
+    """Return the pairs that belong together: of one point, and of one item unless items belong together."""
+    if not len(served.record):
+        return []
+    key = served.point.astype(np.int64)
+    if not statistic.over_items:
+        key = key * len(records.items) + statistic.item[served.record]
+    order = np.argsort(key, kind="stable")
+    starts = np.flatnonzero(np.diff(key[order])) + 1
+    return list(np.split(order, starts))
+
+
+def _size(statistic: Statistic, records: Records, served: Served, rows: Rows) -> int:
+    """Return how many values a group has; items, not readings, where it runs over items."""
+    if statistic.over_items:
+        return len(np.unique(statistic.item[served.record[rows]]))
+    return len(rows)
+
+
+def _fewest(statistic: Statistic) -> int:
+    return 2 if isinstance(statistic.node.statistic, ToleranceBound) else 1
+
+
+Part = tuple[int, float, float, float]
+
+
+def _reduction(statistic: Statistic, records: Records) -> Callable[[Served, Rows], Part]:
+    """Return the function from a group of readings to (representative pair, low, high, u)."""
+    how = statistic.node.statistic
+    if isinstance(how, Mean):
+        return lambda served, rows: _ends(served, rows, _mean(how, statistic.unit))
+    if isinstance(how, Percentile):
+        return lambda served, rows: _percentile(how, statistic, served, rows)
+    assert isinstance(how, ToleranceBound)
+    return lambda served, rows: _tolerance_bound(how, statistic, served, rows)
+
+
+def _ends(served: Served, rows: Rows, reduce: Callable[[Floats], float]) -> Part:
+    low, high = reduce(served.low[rows]), reduce(served.high[rows])
+    nearest = rows[np.argmin(np.abs(np.nan_to_num(served.low[rows]) - low))]
+    return int(nearest), low, high, _common(served.u[rows])
+
+
+def _common(u: Floats) -> float:
+    return float(np.max(u)) if len(u) else np.nan
+
+
+def _mean(how: Mean, unit: str) -> Callable[[Floats], float]:
+    if how.of == "power" and parse_unit(unit or "1").is_log:
+        return lambda values: float(10 * np.log10(np.mean(10 ** (values / 10))))
+    if how.of == "squares":
+        return lambda values: float(np.sqrt(np.mean(values**2)))
+    return lambda values: float(np.mean(values))
+
+
+def _percentile(how: Percentile, statistic: Statistic, served: Served, rows: Rows) -> Part:
+    weights = np.ones(len(rows))
+    if statistic.over_sphere:
+        theta = statistic.columns.numeric.get("theta")
+        if theta is None or np.isnan(theta[served.record[rows]]).any():
+            return int(rows[0]), -np.inf, np.inf, _common(served.u[rows])
+        weights = grid_weights(theta[served.record[rows]]) if len(rows) > 1 else weights
+    level = how.percent.value
+    return _ends(
+        served, rows, lambda values: percentile(values, weights, level, complement=how.sense == "CCDF")
+    )
+
+
+def _tolerance_bound(how: ToleranceBound, statistic: Statistic, served: Served, rows: Rows) -> Part:
+    """Return mean ± k·s over the items; an interval that the population fills, for a two-sided limit."""
+    side = side_of(statistic.node.limit)
+    worst = min if side is Side.LOWER else max
+    item = statistic.item[served.record[rows]]
+    values = np.array([worst(served.low[rows][item == one]) for one in np.unique(item)])
+    if len(values) < 2:
+        return int(rows[0]), float(values[0]), float(values[0]), _common(served.u[rows])
+    coverage, confidence = how.coverage.value / 100, how.confidence.value / 100
+    factor = two_sided_factor if side is None else one_sided_factor
+    reach = factor(len(values), coverage, confidence) * float(np.std(values, ddof=1))
+    low = high = float(np.mean(values))
+    low, high = (
+        (low - reach, high + reach)
+        if side is None
+        else (low - reach,) * 2
+        if side is Side.LOWER
+        else (high + reach,) * 2
+    )
+    extreme = np.argmin(served.low[rows]) if side is Side.LOWER else np.argmax(served.low[rows])
+    return int(rows[extreme]), low, high, _common(served.u[rows])
+
+
+def _together(parts: list[Part], served: Served) -> Served:
+    chosen = np.array([part[0] for part in parts], np.intp)
+    low, high, u = (np.array([part[place] for part in parts], np.float64) for place in (1, 2, 3))
+    return Served(served.record[chosen], served.point[chosen], low, high, u)
+
+
+def with_too_few(readings: Readings, few: NDArray[np.bool_], needed: int | None) -> Readings:
+    """Return readings of which those from too few values are insufficient, whatever they would say."""
+    if not few.any():
+        return readings
+    verdict = readings.verdict.copy()
+    verdict[few & (verdict <= Verdict.CONDITIONAL_PASS)] = Verdict.INSUFFICIENT
+    words = f"fewer values than the {needed or 2} that the limit asks for"
+    return replace(readings, verdict=verdict, why=(*readings.why, words))
+
+
+def forgiven(
+    readings: Readings, relaxed: Readings | None, groups: Rows, most: Callable[[int], int]
+) -> Readings:
+    """Return readings of which, in each group (p,), up to ``most`` fails that keep the relaxed limit are let pass."""
+    failing = readings.verdict >= Verdict.CONDITIONAL_FAIL
+    if not failing.any():
+        return readings
+    verdict = readings.verdict.copy()
+    kept = np.ones(len(verdict), bool) if relaxed is None else relaxed.verdict <= Verdict.CONDITIONAL_PASS
+    for group in np.unique(groups[failing]):
+        rows = np.flatnonzero(groups == group)
+        fails = rows[failing[rows]]
+        if len(fails) <= most(len(rows)) and kept[fails].all():
+            verdict[fails] = Verdict.PASS
+    return replace(readings, verdict=verdict)
