@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING, Annotated
 
 import typer
 
+from specflow.cli.console import say
 from specflow.errors import SpecflowError
 
 if TYPE_CHECKING:
@@ -60,10 +61,13 @@ def find_project(project: str) -> str:
 
 
 def open_store(project: str, *, read_only: bool = False) -> ProjectStore:
-    """Open the project that the option means."""
+    """Open the project that the option means; say what opening it did (an upgrade, and where the copy is)."""
     from specflow.store import open_project
 
-    return open_project(find_project(project), read_only=read_only)
+    store = open_project(find_project(project), read_only=read_only)
+    for note in store.notes:
+        say(note)
+    return store
 
 
 def judged_on(as_of: str) -> date:
