@@ -19,7 +19,8 @@ class SheetColumn(Document):
     """A column of a sheet.
 
     ``aliases`` are other headers it is known by; ``required`` means that the sheet cannot be read without the column;
-    ``field`` is the field of the document that it fills ("" when it has the same name as ``key``). ``choices`` are
+    ``field`` is the field of the document that it fills ("" when it has the same name as ``key``), with the part of it
+    behind a dot where several columns fill one field (``source.issue``). ``choices`` are
     the words of its drop-down; a cell may hold others only where ``open_choices`` says so.
     """
 

@@ -80,13 +80,16 @@ class Intake:
         self.echoes[code] = "; ".join(filter(None, (self.echoes.get(code, ""), sentence)))
 
     def add(self, document: Document, stated: Iterable[str] = ()) -> None:
-        """Take a document. Fields that no column of the sheet states stay as the project has them."""
+        """Take a document. What no column of the sheet states stays as the project has it.
+
+        ``stated`` names fields, or parts of a field behind a dot. A part that is not stated, but follows from another
+        cell (a bandwidth from the unit of the limit), counts as stated.
+        """
         noun = NOUN_BY_DOCUMENT[type(document)]
         code = getattr(document, noun.id_field)
         before = self.snapshot.find(type(document), code)
         if before is not None:
-            unstated = set(type(document).model_fields) - set(stated) - {noun.id_field, "origin"}
-            document = document.model_copy(update={name: getattr(before, name) for name in unstated})
+            document = _laid_over(document, before, {noun.id_field, "origin", *stated})
         self.documents.setdefault(noun.name, {})[code_key(code)] = document
 
     def find(self, kind: type[D], code: str | None) -> D | None:
@@ -147,3 +150,22 @@ class Intake:
         noun = NOUN_BY_DOCUMENT[kind]
         stored = [str(getattr(one, noun.id_field)) for one in self.snapshot.all(kind)]
         return [*stored, *(code for code, *_ in self.codes.get(noun.name, {}).values())]
+
+
+def _laid_over(document: D, before: D, stated: set[str]) -> D:
+    """The document with what it does not state as it was before."""
+    kept: dict[str, object] = {}
+    for name in set(type(document).model_fields) - stated:
+        was, now = getattr(before, name), getattr(document, name)
+        parts = {path.partition(".")[2] for path in stated if path.startswith(f"{name}.")}
+        if not parts:
+            kept[name] = was
+        elif isinstance(was, Document) and isinstance(now, Document):
+            kept[name] = _parts_laid_over(now, was, parts)
+    return document.model_copy(update=kept)
+
+
+def _parts_laid_over(now: Document, was: Document, stated: set[str]) -> Document:
+    fields = type(now).model_fields
+    silent = [name for name in fields if name not in stated and getattr(now, name) == fields[name].default]
+    return now.model_copy(update={name: getattr(was, name) for name in silent})

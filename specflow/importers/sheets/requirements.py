@@ -4,30 +4,28 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from specflow.conditions import find_dimension
 from specflow.errors import UnitError
 from specflow.importers.sheets.decision_rules import decision_rule, provers, with_test_tolerance
 from specflow.importers.sheets.intake import Intake
+from specflow.importers.sheets.limit_cells import check_inputs, limit_cell
 from specflow.importers.sheets.parameters import known_parameter
 from specflow.importers.sheets.plans import plan_in_row
 from specflow.importers.sheets.requirement_columns import LAYOUT
 from specflow.importers.sheets.row import SheetRow
 from specflow.importers.sheets.sheet import Sheet
 from specflow.importers.sheets.spelling import near
-from specflow.limits import alternatives, limit_inputs, limit_words, parse_condition, parse_limit
+from specflow.limits import limit_words, parse_condition
 from specflow.model.base import MAX_CODE_LENGTH, code_key
 from specflow.model.block import Block, Tier
 from specflow.model.conditions import ConditionsSet
-from specflow.model.declared import DeclaredValue
 from specflow.model.limit import Limit, LimitState, MeasuredIn
-from specflow.model.parameter import Better, Parameter, QuantityIdentity
+from specflow.model.parameter import Parameter, QuantityIdentity
 from specflow.model.requirement import Obligation, OpenValue, Requirement, Source
-from specflow.parameters import Candidate, suits
-from specflow.units import ONE, convert, format_value, parse_quantity, parse_unit
+from specflow.parameters import Candidate
+from specflow.units import convert, format_value, parse_quantity, parse_unit
 
 _ALWAYS = frozenset({"", "u", "always", "all", "unconditional"})
 _NONE = frozenset({"none", "no conditions"})
-_NO_NUMBERS = frozenset({"nan", "inf", "infinity"})
 _SIZES = (("GHz", 1e9), ("MHz", 1e6), ("kHz", 1e3), ("Hz", 1.0))
 
 
@@ -37,23 +35,33 @@ def read(rows: Sequence[SheetRow], intake: Intake) -> None:
         requirement = _requirement(row, intake)
         if requirement is None or not plan_in_row(row, requirement, intake):
             continue
-        intake.add(requirement, row.stated())
+        intake.add(requirement, _stated(row, requirement))
         parameter = intake.dictionary.get(requirement.quantity.parameter)
         words = limit_words(requirement.limit, parameter)
         intake.echo(requirement.id, words)
 
 
+def _stated(row: SheetRow, requirement: Requirement) -> set[str]:
+    """What the row states: its columns, the factor in the decision rule, and that a firm limit is not open."""
+    stated = row.stated()
+    if row.has("decision_rule"):
+        stated.add("decision_rule.guard_factor")
+    if requirement.limit.state is LimitState.FIRM:
+        stated.add("open_value")
+    return stated
+
+
 def _requirement(row: SheetRow, intake: Intake) -> Requirement | None:
     named = known_parameter(row, "parameter", intake)
     parameter = named.parameter if named else None
-    limit = _limit(row, intake, parameter)
+    limit = limit_cell(row, intake, "limit", parameter, hint=row.text("unit"))
     block = _block(row, intake)
     quantity = _quantity(row, intake, named, limit, block)
     parents, reason = _parents(row, intake)
     rule = decision_rule(row, limit, parameter)
     conditions = _conditions(row, intake)
     if limit is not None:
-        _check_inputs(row, intake, limit, conditions)
+        check_inputs(row, intake, limit, conditions)
     fields = {
         "title": row.prose("title") or (parameter.title if parameter else ""),
         "statement": row.prose("statement"),
@@ -81,7 +89,7 @@ def _requirement(row: SheetRow, intake: Intake) -> Requirement | None:
         id=row.subject,
         block=row.subject if block is None else block.id,
         quantity=quantity,
-        limit=with_test_tolerance(row, limit),
+        limit=_with_known_tolerance(row, with_test_tolerance(row, limit), intake),
         parents=parents,
         derived_reason=reason,
         decision_rule=rule,
@@ -101,81 +109,12 @@ _PROSE = (
 )
 
 
-def _limit(row: SheetRow, intake: Intake, parameter: Parameter | None) -> Limit | None:
-    """The limit; a bare number needs the unit column, unless the parameter is a plain number."""
-    text = row.needed("limit")
-    hint = row.text("unit") or row.units.get("limit", "")
-    if hint:
-        row.attempt("unit" if row.text("unit") else "limit", lambda: parse_unit(hint))
-    if parameter is None and text:
-        _check_grammar(row, text, hint)
-    if not text or parameter is None or "unit" in row.spoiled:
-        return None
-    if not hint and parse_unit(parameter.unit) == ONE:
-        hint = parameter.unit
-    limit = row.attempt("limit", lambda: parse_limit(text, unit_hint=hint, parameter=parameter))
-    if limit is None or _lacks_number(row, limit, intake) or (not hint and _lacks_unit(row, text, parameter)):
-        return None
-    _check_kind(row, limit, parameter)
-    return limit
-
-
-def _check_grammar(row: SheetRow, text: str, hint: str) -> None:
-    """Where the parameter is not known: find the mistakes in the limit that no parameter would mend."""
-    unknown = Parameter(
-        key=row.text("parameter") or "unknown", title="", group="", unit=hint or "1", better=Better.HIGHER
-    )
-    row.attempt("limit", lambda: parse_limit(text, unit_hint=hint, parameter=unknown))
-
-
-def _lacks_number(row: SheetRow, limit: Limit, intake: Intake) -> bool:
-    """Whether a unit or "NaN" was read as a name, because the number before it is missing."""
-    for name in limit_inputs(limit):
-        is_unit = name == limit.unit and all(value.name != name for value in intake.all(DeclaredValue))
-        if is_unit or name.casefold() in _NO_NUMBERS:
-            row.fault(
-                "limit", f"{name} stands where the limit {limit.text!r} needs a number", "write the number"
-            )
-            return True
-    return False
-
-
-def _lacks_unit(row: SheetRow, text: str, parameter: Parameter) -> bool:
-    """Whether the text reads only because the parameter lends its unit, which would be a guess."""
-    silent = parameter.model_copy(update={"unit": ""})
-    return row.attempt("limit", lambda: parse_limit(text, parameter=silent)) is None
-
-
-def _check_kind(row: SheetRow, limit: Limit, parameter: Parameter) -> None:
-    """Refuse a limit whose unit cannot be one of its parameter. Of alternatives, one member of its kind is enough."""
-    units = (
-        [limit.unit] if limit.unit else [one.limit.unit for one in alternatives(limit) if not one.quantity]
-    )
-    units = [unit for unit in units if unit]
-    if units and not any(suits(parameter, unit) for unit in units):
-        row.fault(
-            "limit",
-            f"the limit is in {' and '.join(units)}, but {parameter.title} ({parameter.key}) is in {parameter.unit}",
-            f"write the limit in a unit such as {parameter.unit}, or name the parameter that is meant",
-            rule="workbook-unit-kind",
-        )
-
-
-def _check_inputs(row: SheetRow, intake: Intake, limit: Limit, conditions: str | None) -> None:
-    """Say which names of a formula nobody supplies so far: no declared value, no condition, no parameter."""
-    declared = [value.name for value in intake.all(DeclaredValue)]
-    known = intake.find(ConditionsSet, conditions)
-    own = {dimension.name for dimension in known.dimensions} if known else set()
-    for name in sorted(limit_inputs(limit) - own - set(declared)):
-        if find_dimension(name) is None and not intake.dictionary.match(name):
-            intake.note(
-                row,
-                "limit",
-                f"the limit refers to {name}, which is neither declared nor a known condition"
-                + near(name, declared),
-                f"declare {name} on the sheet Declared values, or name a condition that is recorded",
-                rule="workbook-unknown-input",
-            )
+def _with_known_tolerance(row: SheetRow, limit: Limit, intake: Intake) -> Limit:
+    """In a sheet without a column for it, the test tolerance stays as the project has it."""
+    known = intake.snapshot.find(Requirement, row.subject)
+    if known is None or row.has("test_tolerance") or limit.test_tolerance is not None:
+        return limit
+    return limit.model_copy(update={"test_tolerance": known.limit.test_tolerance})
 
 
 def _block(row: SheetRow, intake: Intake) -> Block | None:

@@ -5,9 +5,9 @@ from __future__ import annotations
 from typing import get_args
 
 from specflow.importers.sheets.intake import Intake
+from specflow.importers.sheets.limit_cells import limit_cell
 from specflow.importers.sheets.row import SheetRow
 from specflow.importers.sheets.sheet import MARK_COLUMN, Sheet, each_row
-from specflow.limits import parse_limit
 from specflow.model.decision import Nonconformance, Waiver
 from specflow.model.requirement import Requirement
 from specflow.model.sheet import SheetColumn, SheetLayout
@@ -101,12 +101,8 @@ def build(row: SheetRow, intake: Intake) -> Waiver | None:
     code = row.needed("requirement")
     spelled = intake.link(row, "requirement", Requirement, code) if code else ""
     requirement = intake.find(Requirement, spelled) if spelled else None
-    permitted = row.needed("permitted")
-    if permitted and requirement is not None:
-        parameter = intake.dictionary.get(requirement.quantity.parameter)
-        row.attempt(
-            "permitted", lambda: parse_limit(permitted, unit_hint=requirement.limit.unit, parameter=parameter)
-        )
+    parameter = intake.dictionary.get(requirement.quantity.parameter) if requirement else None
+    permitted = limit_cell(row, intake, "permitted", parameter)
     state = row.one_of("state", _STATES, "requested")
     if state == "approved" and not row.prose("approver"):
         row.fault(
@@ -122,7 +118,7 @@ def build(row: SheetRow, intake: Intake) -> Waiver | None:
         requirement_revision=row.whole("requirement_revision", _revision(row, intake, requirement), least=1),
         items=row.words("items"),
         conditions=row.text("conditions"),
-        permitted=permitted,
+        permitted="" if permitted is None else permitted.text,
         reason=row.needed("reason"),
         effect=row.prose("effect"),
         requester=row.prose("requester"),

@@ -141,7 +141,9 @@ def test_an_approved_waiver_has_dates_items_and_an_approver(tmp_path: Path, proj
 @pytest.mark.parametrize(
     ("cells", "words"),
     [
-        ({"Permitted limit": ">= 3 GHz max"}, ""),
+        ({"Permitted limit": ">= 3 GHz"}, "the limit is in GHz, but EIRP (eirp) is in dBm"),
+        ({"Permitted limit": ">= 44.5"}, "no unit"),
+        ({"Permitted limit": "low"}, "direction"),
         ({"Permitted limit": None}, "Permitted limit is empty"),
         ({"Reason": None}, "Reason is empty"),
         ({"State": "approved"}, "nobody who approved it"),

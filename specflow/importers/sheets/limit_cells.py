@@ -1,0 +1,105 @@
+"""A cell that holds a limit: read, and checked against the parameter and the names that it refers to."""
+
+from __future__ import annotations
+
+from specflow.conditions import find_dimension
+from specflow.importers.sheets.intake import Intake
+from specflow.importers.sheets.row import SheetRow
+from specflow.importers.sheets.spelling import near
+from specflow.limits import alternatives, limit_inputs, parse_limit
+from specflow.model.conditions import ConditionsSet
+from specflow.model.declared import DeclaredValue
+from specflow.model.limit import Limit, Population
+from specflow.model.parameter import Better, Parameter
+from specflow.parameters import suits
+from specflow.units import ONE, parse_unit
+
+_NO_NUMBERS = frozenset({"nan", "inf", "infinity"})
+
+
+def limit_cell(
+    row: SheetRow, intake: Intake, column: str, parameter: Parameter | None, *, hint: str = ""
+) -> Limit | None:
+    """Return the limit of a cell; None where it is empty or refused, or where its parameter is not known.
+
+    ``hint`` is the unit of a bare number, which else may stand in the header; without either a bare number is refused,
+    unless the parameter is a plain number.
+    """
+    text = row.needed(column)
+    if hint and row.attempt("unit", lambda: parse_unit(hint)) is None:
+        return None
+    hint = hint or row.units.get(column, "")
+    if parameter is None:
+        if text:
+            _check_grammar(row, column, text, hint)
+        return None
+    if not hint and parse_unit(parameter.unit) == ONE:
+        hint = parameter.unit
+    limit = (
+        row.attempt(column, lambda: parse_limit(text, unit_hint=hint, parameter=parameter)) if text else None
+    )
+    if limit is None or _lacks_number(row, column, limit, intake):
+        return None
+    if not hint and _lacks_unit(row, column, text, parameter):
+        return None
+    _check_kind(row, column, limit, parameter)
+    return limit
+
+
+def check_inputs(row: SheetRow, intake: Intake, limit: Limit, conditions: str | None) -> None:
+    """Say which names of a formula nobody supplies so far: no declared value, no condition, no parameter."""
+    declared = [value.name for value in intake.all(DeclaredValue)]
+    known = intake.find(ConditionsSet, conditions)
+    own = {dimension.name for dimension in known.dimensions} if known else set()
+    for name in sorted(limit_inputs(limit) - own - set(declared)):
+        if find_dimension(name) is None and not intake.dictionary.match(name):
+            intake.note(
+                row,
+                "limit",
+                f"the limit refers to {name}, neither declared nor a known condition" + near(name, declared),
+                f"declare {name} on the sheet Declared values, or name a condition that is recorded",
+                rule="workbook-unknown-input",
+            )
+
+
+def _check_grammar(row: SheetRow, column: str, text: str, hint: str) -> None:
+    """Where the parameter is not known: find the mistakes in the limit that no parameter would mend."""
+    name = row.text("parameter") or "unknown"
+    unknown = Parameter(key=name[:80], title="", group="", unit=hint or "1", better=Better.HIGHER)
+    row.attempt(column, lambda: parse_limit(text, unit_hint=hint, parameter=unknown))
+
+
+def _lacks_number(row: SheetRow, column: str, limit: Limit, intake: Intake) -> bool:
+    """Whether a unit or "NaN" was read as a name, because the number before it is missing."""
+    declared = {value.name for value in intake.all(DeclaredValue)}
+    for name in limit_inputs(limit) - declared:
+        if name == limit.unit or name.casefold() in _NO_NUMBERS:
+            row.fault(
+                column, f"{name} stands where the limit {limit.text!r} needs a number", "write the number"
+            )
+            return True
+    return False
+
+
+def _lacks_unit(row: SheetRow, column: str, text: str, parameter: Parameter) -> bool:
+    """Whether the text reads only because the parameter lends its unit, which would be a guess."""
+    silent = parameter.model_copy(update={"unit": ""})
+    return row.attempt(column, lambda: parse_limit(text, parameter=silent)) is None
+
+
+def _check_kind(row: SheetRow, column: str, limit: Limit, parameter: Parameter) -> None:
+    """Refuse a limit whose unit cannot be one of its parameter.
+
+    Of alternatives, one member of its kind is enough; a limit on a formula of several readings has a unit of its own.
+    """
+    if isinstance(limit.tree, Population) and limit.tree.of is not None:
+        return
+    own = [limit.unit] if limit.unit else [one.limit.unit for one in alternatives(limit) if not one.quantity]
+    units = [unit for unit in own if unit]
+    if units and not any(suits(parameter, unit) for unit in units):
+        row.fault(
+            column,
+            f"the limit is in {' and '.join(units)}, but {parameter.title} ({parameter.key}) is in {parameter.unit}",
+            f"write the limit in a unit such as {parameter.unit}, or name the parameter that is meant",
+            rule="workbook-unit-kind",
+        )
