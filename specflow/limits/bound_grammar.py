@@ -124,10 +124,10 @@ def _bound(draft: Draft, side: Side, strict: bool, bare: Bare) -> Bound:
 
 
 def _refuse_arithmetic(draft: Draft, bare: Bare) -> None:
-    if is_bare_arithmetic(bare.value):
+    if is_bare_arithmetic(bare.value) and not draft.reader.text.startswith("(", bare.place):
         draft.reader.fail(
             "a sum of plain numbers may be meant as a range or a tolerance",
-            hint="write 3..5 V, or 26 +2/-3 dBm, or the result",
+            hint="write 3..5 V, or 26 +2/-3 dBm, or put the sum in parentheses",
             place=bare.place,
         )
 

@@ -58,7 +58,7 @@ def evaluate_limit(limit: Limit, context: LimitContext, *, with_test_tolerance: 
     if limit.rounding is not None:
         bounds = rounded(bounds, limit.rounding)
     if with_test_tolerance and limit.test_tolerance is not None:
-        bounds = _relaxed(bounds, limit.test_tolerance, context)
+        bounds = _relaxed(bounds, limit.test_tolerance)
     return bounds
 
 
@@ -239,15 +239,15 @@ def rounded(bounds: Bounds, rounding: Rounding) -> Bounds:
     return replace(bounds, lower=to_step(bounds.lower), upper=to_step(bounds.upper))
 
 
-def _relaxed(bounds: Bounds, tolerance: TestTolerance, context: LimitContext) -> Bounds:
+def _relaxed(bounds: Bounds, tolerance: TestTolerance) -> Bounds:
     """Relax the bounds by a test tolerance: lower bounds go down, upper bounds go up."""
     if tolerance.place == "stimulus" or not bounds.unit:
         return bounds
-    inputs = Inputs(context.columns, context.declared)
+    own = tolerance.amount
     try:
-        amount = number_in(tolerance.amount, difference_unit(bounds.unit), inputs)
+        amount = float(convert_to(np.array([own.value]), own.unit, difference_unit(bounds.unit))[0])
     except ExpressionError as error:
         return _unknown(bounds.unit, f"test tolerance: {error.message}")
     lower = None if bounds.lower is None else bounds.lower - amount
     upper = None if bounds.upper is None else bounds.upper + amount
-    return _settled(replace(bounds, lower=lower, upper=upper), inputs)
+    return replace(bounds, lower=lower, upper=upper)

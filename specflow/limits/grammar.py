@@ -16,13 +16,13 @@ from typing import Literal
 
 from specflow.limits.bound_grammar import directed, read_bound
 from specflow.limits.draft import Bare, Draft
-from specflow.limits.expression_grammar import read_condition, read_sum
+from specflow.limits.expression_grammar import read_condition
 from specflow.limits.expression_shape import is_condition
 from specflow.limits.population_grammar import read_population, read_statistic
 from specflow.limits.reader import RESERVED, Reader
-from specflow.limits.settling import spine
 from specflow.limits.shape_grammar import (
     read_allowance,
+    read_amount,
     read_bandwidth,
     read_by,
     read_cases,
@@ -264,11 +264,7 @@ def _take_whole(draft: Draft) -> bool:
         return True
     if reader.take_words("test tolerance") is not None:
         draft.whole_only("the test tolerance", place)
-        amount = read_sum(reader)
-        if any(isinstance(part, Number) and not part.unit for part in spine(amount)):
-            reader.fail(
-                "expected the test tolerance with its unit", hint="test tolerance 1.5 dB", place=place
-            )
+        amount = read_amount(draft, "the test tolerance")
         stimulus = reader.take_words("on the stimulus", "on stimulus") is not None
         draft.test_tolerance = TestTolerance(amount=amount, place="stimulus" if stimulus else "limit")
         return True

@@ -51,14 +51,10 @@ def limit_text(limit: Limit) -> str:
         parts.append(f"rounded {way}to {expression_text(limit.rounding.step)}")
     if limit.test_tolerance is not None:
         place = " on stimulus" if limit.test_tolerance.place == "stimulus" else ""
-        parts.append(f"test tolerance {_amount_text(limit.test_tolerance.amount)}{place}")
+        parts.append(f"test tolerance {expression_text(limit.test_tolerance.amount)}{place}")
     if limit.state is LimitState.TBR:
         parts.append("(TBR)")
     return " ".join(parts)
-
-
-def _amount_text(node: Expression) -> str:
-    return expression_text(node) if isinstance(node, Number) else f"({expression_text(node)})"
 
 
 def with_unit_text(node: Expression, unit: str) -> str:

@@ -102,8 +102,7 @@ def _of_mask(mask: Mask) -> Iterator[Expression]:
 
 def limit_inputs(limit: Limit) -> frozenset[str]:
     """Return the names of the conditions, axes and declared values that the evaluation of a limit needs."""
-    names = tree_names(limit.tree)
-    return names if limit.test_tolerance is None else names | expression_names(limit.test_tolerance.amount)
+    return tree_names(limit.tree)
 
 
 def tree_names(node: LimitNode) -> frozenset[str]:
