@@ -8,6 +8,7 @@ from __future__ import annotations
 import sys
 from pathlib import Path
 
+from ferry_results import array_simulation, array_two_laboratories, converter_bench, tile_and_amplifier
 from ferry_specification import specification_sheets
 from workbooks import write_book
 
@@ -16,7 +17,13 @@ HERE = Path(__file__).parent
 
 def make(folder: Path = HERE) -> None:
     """Write all files below ``folder``."""
-    write_book(folder / "ferry" / "ferry-requirements.xlsx", "Harbour ferry terminal", specification_sheets())
+    ferry = folder / "ferry"
+    results = ferry / "results"
+    write_book(ferry / "ferry-requirements.xlsx", "Harbour ferry terminal", specification_sheets())
+    write_book(results / "array_simulation.xlsx", "Array simulation", array_simulation())
+    write_book(results / "array_two_laboratories.xlsx", "Array at two ranges", array_two_laboratories())
+    write_book(results / "converter_bench.xlsx", "Converter bench", converter_bench())
+    write_book(results / "tile_and_amplifier.xlsx", "Tile and amplifier", tile_and_amplifier())
 
 
 if __name__ == "__main__":
