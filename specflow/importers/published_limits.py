@@ -224,7 +224,7 @@ def _text_of(group: Sequence[PublishedRow]) -> tuple[str, Callable[[PublishedRow
     if len(group) == 1:
         return group[0].limit_text(), PublishedRow.keys_in_limit
     text, keys = alternatives_text(group)
-    return text, lambda row: row.keys_in_limit() | keys
+    return text, lambda row: row.keys_in_limit() | keys | {"or_with"}
 
 
 def _shared(

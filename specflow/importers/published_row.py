@@ -14,7 +14,7 @@ from specflow.importers.published_conditions import (
 )
 
 #: Conditions that say how to read the row; they go into the limit and are no conditions of a measurement.
-_READING = frozenset({"strict", "value_kind", "rule", "or_with", "between", "asymmetric"})
+_READING = frozenset({"strict", "value_kind", "rule", "between", "asymmetric"})
 _BOUNDS = {"max": ("<=", "<"), "min": (">=", ">")}
 _PERCENTILE = re.compile(
     r"(?P<of>\w+) at (?P<percent>\d+)(?:th)? %-tile of (?P<sense>C?CDF) over (?P<over>[\w ]+)"
@@ -146,7 +146,8 @@ class PublishedRow:
         for written in self.written:
             if written.key in without:
                 continue
-            condition, leftover = parse_condition_value(written)
+            # A reference to other rows is no condition; what it names was joined, or is kept as written.
+            condition, leftover = (None, True) if written.key == "or_with" else parse_condition_value(written)
             if condition is not None and condition.name not in conditions:
                 conditions[condition.name] = condition
             else:

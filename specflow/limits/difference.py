@@ -25,13 +25,15 @@ from specflow.model.limit import (
     Segment,
     Side,
     Tolerance,
+    Undefined,
 )
 
 
 def limit_difference(before: Limit, after: Limit) -> str:
     """Return what changed, in words ("tightened by 0.5 dB (-28 -> -28.5 dBc)"); "" when the meaning is the same."""
     changes = node_differences(before.tree, after.tree)
-    if before.state is not after.state:
+    number_came_or_went = isinstance(before.tree, Undefined) is not isinstance(after.tree, Undefined)
+    if before.state is not after.state and not number_came_or_went:
         changes.append(f"state changed from {before.state.value} to {after.state.value}")
     if before.rounding != after.rounding:
         changes.append("rounding changed")
@@ -47,6 +49,12 @@ def node_differences(before: LimitNode, after: LimitNode) -> list[str]:
     if before == after:
         return []
     match before, after:
+        case Undefined(), Undefined():
+            return [f"changed from {node_text(before)} to {node_text(after)}"]
+        case Undefined(label=label), _:
+            return [f"no longer {label}: {node_words(after)}"]
+        case _, Undefined(label=label):
+            return [f"changed from {node_words(before)} to {label}"]
         case Bound(), Bound():
             return _bounds(before, after)
         case Between(), Between():
@@ -107,7 +115,7 @@ def _moved(before: Expression, after: Expression, unit: str, side: Side) -> list
         return []
     old, new = plain_number(before), plain_number(after)
     if old is None or new is None:
-        return [f"formula changed from {expression_text(before)} to {expression_text(after)} {unit}"]
+        return [f"formula changed from {expression_words(before, unit)} to {expression_words(after, unit)}"]
     arrow = f"({expression_text(before)} -> {expression_text(after)} {unit})"
     amount = Decimal(expression_text(after)) - Decimal(expression_text(before))
     if amount == 0:

@@ -17,6 +17,7 @@ from specflow.limits.expression_shape import plain_number
 from specflow.limits.expression_value import number_in, truth
 from specflow.limits.inputs import Flags, Inputs
 from specflow.limits.mask import mask_bounds
+from specflow.limits.tree import tree_units
 from specflow.model.expression import Number
 from specflow.model.limit import (
     Allowed,
@@ -163,25 +164,29 @@ def _difference(values: Floats, node: Tolerance, size: Floats) -> Floats:
 
 
 def _cases(node: Cases, inputs: Inputs) -> Bounds:
-    """The first case whose condition holds; rows where an earlier condition is unknown are unknown."""
+    """The first case whose condition holds; rows where an earlier condition is unknown are unknown.
+
+    A case that holds nowhere is not evaluated: what it needs may well be missing.
+    """
     open_rows, undecided = ALL_FLAG, NO_FLAG
     parts: list[tuple[Flags, Bounds]] = []
     for case in node.cases:
         found = truth(case.when, inputs)
         undecided = undecided | (open_rows & ~found.known)
         chosen = open_rows & found.true & ~undecided
-        parts.append((chosen, evaluate_node(case.limit, inputs)))
+        if chosen.any():
+            parts.append((chosen, evaluate_node(case.limit, inputs)))
         open_rows = open_rows & ~found.true & found.known
     if node.otherwise is not None:
-        parts.append((open_rows, evaluate_node(node.otherwise, inputs)))
+        if open_rows.any():
+            parts.append((open_rows, evaluate_node(node.otherwise, inputs)))
         open_rows = open_rows & NO_FLAG
-    return _gathered(parts, open_rows, undecided)
+    units = [part.unit for _, part in parts if part.unit] or list(tree_units(node)[:1])
+    return _gathered(parts, open_rows, undecided, units[0] if units else "")
 
 
-def _gathered(parts: list[tuple[Flags, Bounds]], nothing: Flags, undecided: Flags) -> Bounds:
-    units = list(dict.fromkeys(part.unit for _, part in parts if part.unit))
-    if len(units) > 1:
-        parts = [(rows, in_unit(part, units[0])) for rows, part in parts]
+def _gathered(parts: list[tuple[Flags, Bounds]], nothing: Flags, undecided: Flags, unit: str) -> Bounds:
+    parts = [(rows, in_unit(part, unit)) for rows, part in parts]
     has_lower = any(part.lower is not None for _, part in parts)
     has_upper = any(part.upper is not None for _, part in parts)
     widths = any(part.bandwidth_hz is not None for _, part in parts)
@@ -206,7 +211,7 @@ def _gathered(parts: list[tuple[Flags, Bounds]], nothing: Flags, undecided: Flag
     return Bounds(
         np.where(undecided, np.nan, lower) if has_lower else None,
         np.where(undecided, np.nan, upper) if has_upper else None,
-        units[0] if units else "",
+        unit,
         pick_flags([part.lower_strict for _, part in parts]),
         pick_flags([part.upper_strict for _, part in parts]),
         pick_flags([part.applies for _, part in parts]) | undecided,

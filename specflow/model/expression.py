@@ -6,6 +6,7 @@ Numbers keep their text, because the trailing zero of "4.0" says how well the nu
 
 from __future__ import annotations
 
+from math import isfinite
 from typing import Annotated, Literal
 
 from pydantic import Field, model_validator
@@ -44,7 +45,8 @@ class Number(Document):
 
     @model_validator(mode="after")
     def _is_a_number(self) -> Number:
-        float(self.text)
+        if not isfinite(float(self.text)):
+            raise ValueError(f"{self.text} is not a finite number")
         return self
 
     @property
