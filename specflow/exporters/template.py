@@ -115,10 +115,10 @@ def _write_guide(sheet: Worksheet, layouts: Sequence[SheetLayout], formats: dict
 def _write_sheet(sheet: Worksheet, layout: SheetLayout, formats: dict[str, Any]) -> None:
     sheet.write_string(0, 0, f"{layout.title}: {layout.intro}", formats["name"])
     sheet.set_row(
-        _GUIDANCE_ROW, _height([(_guidance(column), column.width) for column in layout.columns], 12)
+        _GUIDANCE_ROW, _height([(_guidance(column), column.width) for column in layout.offered], 12)
     )
-    sheet.set_row(_HEADER_ROW, _height([(column.title, column.width - 2) for column in layout.columns]))
-    for place, column in enumerate(layout.columns):
+    sheet.set_row(_HEADER_ROW, _height([(column.title, column.width - 2) for column in layout.offered]))
+    for place, column in enumerate(layout.offered):
         sheet.set_column(place, place, column.width, formats["cell"])
         sheet.write_string(_GUIDANCE_ROW, place, _guidance(column), formats["guidance"])
         sheet.write_string(
@@ -127,9 +127,9 @@ def _write_sheet(sheet: Worksheet, layout: SheetLayout, formats: dict[str, Any])
         _add_choices(sheet, place, column)
     for row, example in enumerate(layout.examples(), start=_FIRST_ROW):
         sheet.set_row(
-            row, _height([(example.get(column.key, ""), column.width) for column in layout.columns])
+            row, _height([(example.get(column.key, ""), column.width) for column in layout.offered])
         )
-        for place, column in enumerate(layout.columns):
+        for place, column in enumerate(layout.offered):
             sheet.write_string(row, place, example.get(column.key, ""), formats["example"])
     sheet.freeze_panes(_FIRST_ROW, _columns_to_freeze(layout))
 
@@ -159,7 +159,7 @@ def _add_choices(sheet: Worksheet, place: int, column: SheetColumn) -> None:
 
 def _columns_to_freeze(layout: SheetLayout) -> int:
     """The mark and the first column of the row's own stay in view; more would crowd a small screen."""
-    return min(2, len(layout.columns))
+    return min(2, len(layout.offered))
 
 
 def _height(cells: Sequence[tuple[str, int]], line: int = 15) -> int:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Collection
 from typing import Self
 
 from pydantic import Field, model_validator
@@ -18,20 +19,28 @@ GUIDE = "How to fill this in"
 class SheetColumn(Document):
     """A column of a sheet.
 
-    ``aliases`` are other headers it is known by; ``required`` means that the sheet cannot be read without the column;
-    ``field`` is the field of the document that it fills ("" when it has the same name as ``key``), with the part of it
-    behind a dot where several columns fill one field (``source.issue``). ``choices`` are
-    the words of its drop-down; a cell may hold others only where ``open_choices`` says so.
+    Found by: ``title`` and ``aliases``; ``also`` are headers that usually mean another column, and this one where that
+    column is there under another name. ``required``: the sheet cannot be read without it, unless it has one of the
+    columns named by ``instead``.
+
+    Gives: ``field`` of the document ("" when it is called like ``key``), with the part of it behind a dot where several
+    columns fill one field (``source.issue``).
+
+    Shows: ``guidance``, ``example`` and ``choices``, the words of its drop-down (with ``open_choices`` a cell may hold
+    others). Columns that are read but not offered have ``in_template`` off.
     """
 
     key: str
     title: str
     aliases: tuple[str, ...] = ()
+    also: tuple[str, ...] = ()
     required: bool = False
+    instead: tuple[str, ...] = ()
     field: str = ""
     guidance: str = ""
     choices: tuple[str, ...] = ()
     open_choices: bool = False
+    in_template: bool = True
     example: str = ""
     width: int = Field(default=16, ge=4, le=80)
 
@@ -70,6 +79,19 @@ class SheetLayout(Document):
     def required(self) -> tuple[SheetColumn, ...]:
         """The columns without which the sheet cannot be read."""
         return tuple(column for column in self.columns if column.required)
+
+    @property
+    def offered(self) -> tuple[SheetColumn, ...]:
+        """The columns that the template has."""
+        return tuple(column for column in self.columns if column.in_template)
+
+    def lacking(self, found: Collection[str]) -> tuple[SheetColumn, ...]:
+        """Return the required columns that are neither among ``found`` (keys) nor replaced by one that is."""
+        return tuple(
+            column
+            for column in self.required
+            if column.key not in found and not any(other in found for other in column.instead)
+        )
 
     def column(self, key: str) -> SheetColumn:
         """Return the column of that key; KeyError when there is none."""

@@ -40,11 +40,11 @@ def test_there_is_a_guide_and_one_sheet_a_noun(template: Path) -> None:
 def test_every_sheet_has_guidance_headers_and_a_marked_example_row(template: Path) -> None:
     for layout, sheet in sheets_of(template):
         headers = [cell.value for cell in sheet[3]]
-        assert headers == [column.title for column in layout.columns]
+        assert headers == [column.title for column in layout.offered]
         assert sum(bool(cell.value) for cell in sheet[2]) >= len(layout.required)
         assert sheet["A4"].value == EXAMPLE
         assert sheet.freeze_panes == "C4"
-        for column, cell in zip(layout.columns, sheet[4], strict=True):
+        for column, cell in zip(layout.offered, sheet[4], strict=True):
             assert (cell.value or "") == column.example
             assert not column.required or column.example, f"{layout.title}: {column.title} shows no example"
 
@@ -54,7 +54,7 @@ def test_drop_downs_offer_the_words_that_are_read(template: Path) -> None:
         offered = {
             str(one.sqref).split(":")[0]: one.formula1 for one in sheet.data_validations.dataValidation
         }
-        for column, cell in zip(layout.columns, sheet[4], strict=True):
+        for column, cell in zip(layout.offered, sheet[4], strict=True):
             assert (cell.coordinate in offered) == bool(column.choices)
             if column.choices:
                 assert offered[cell.coordinate].strip('"').split(",") == [

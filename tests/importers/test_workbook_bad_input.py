@@ -273,6 +273,7 @@ def test_what_hangs_on_a_refused_document_is_left_out_with_it(tmp_path: Path) ->
     assert [one.rule for one in draft.findings if one.severity is Severity.WARNING] == [
         "workbook-left-out"
     ] * 3
+    assert "because the block TX was refused" in draft.findings[1].message
     assert [one.id for one in draft.documents] == ["UT"]  # type: ignore[attr-defined]
     assert not draft.echoes
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+from collections import Counter
 from collections.abc import Sequence
 
 from specflow.errors import UnitError
@@ -71,7 +72,7 @@ LAYOUT = SheetLayout(
             key="order",
             title="Order",
             aliases=("Position",),
-            guidance="Place in the chain of its parent: 1, 2, 3 ... Empty: the order of the rows.",
+            guidance="Place among the blocks of its parent: 1, 2, 3 ... Empty: the order of the rows.",
             example="3",
             width=8,
         ),
@@ -118,8 +119,11 @@ def read(rows: Sequence[SheetRow], intake: Intake) -> None:
     parents = {code_key(row.text("parent")) for row in rows} | {
         code_key(block.parent) for block in intake.all(Block) if block.parent
     }
-    for place, row in enumerate(rows, start=1):
-        block = _block(row, intake, place, parents)
+    places: Counter[str] = Counter()
+    for row in rows:
+        parent = code_key(row.text("parent"))
+        places[parent] += 1
+        block = _block(row, intake, places[parent], parents)
         if block is not None:
             intake.add(block, row.stated())
 

@@ -146,6 +146,10 @@ class Intake:
         """Report something that does not stop the row: a default that was taken, a doubtful statement."""
         row.report(column, message, remedy, rule=rule, severity=Severity.WARNING, why=why)
 
+    def has_found(self, rule: str) -> bool:
+        """Whether that rule reported anything so far."""
+        return any(finding.rule == rule for finding in self.findings)
+
     def _spellings(self, kind: type[Document]) -> list[str]:
         noun = NOUN_BY_DOCUMENT[kind]
         stored = [str(getattr(one, noun.id_field)) for one in self.snapshot.all(kind)]

@@ -18,14 +18,15 @@ _NO_NUMBERS = frozenset({"nan", "inf", "infinity"})
 
 
 def limit_cell(
-    row: SheetRow, intake: Intake, column: str, parameter: Parameter | None, *, hint: str = ""
+    row: SheetRow, intake: Intake, column: str, parameter: Parameter | None, *, hint: str = "", text: str = ""
 ) -> Limit | None:
     """Return the limit of a cell; None where it is empty or refused, or where its parameter is not known.
 
-    ``hint`` is the unit of a bare number, which else may stand in the header; without either a bare number is refused,
-    unless the parameter is a plain number.
+    ``text`` is what the cell is taken to say, where that is more than what stands in it (">= 45" in a column of least
+    values). ``hint`` is the unit of a bare number, which else may stand in the header; without either a bare number
+    is refused, unless the parameter is a plain number.
     """
-    text = row.needed(column)
+    text = text or row.needed(column)
     if hint and row.attempt("unit", lambda: parse_unit(hint)) is None:
         return None
     hint = hint or row.units.get(column, "")
@@ -36,7 +37,9 @@ def limit_cell(
     if not hint and parse_unit(parameter.unit) == ONE:
         hint = parameter.unit
     limit = (
-        row.attempt(column, lambda: parse_limit(text, unit_hint=hint, parameter=parameter)) if text else None
+        row.attempt(column, lambda: parse_limit(text, unit_hint=hint, parameter=parameter), said=text)
+        if text
+        else None
     )
     if limit is None or _lacks_number(row, column, limit, intake):
         return None
@@ -66,7 +69,7 @@ def _check_grammar(row: SheetRow, column: str, text: str, hint: str) -> None:
     """Where the parameter is not known: find the mistakes in the limit that no parameter would mend."""
     name = row.text("parameter") or "unknown"
     unknown = Parameter(key=name[:80], title="", group="", unit=hint or "1", better=Better.HIGHER)
-    row.attempt(column, lambda: parse_limit(text, unit_hint=hint, parameter=unknown))
+    row.attempt(column, lambda: parse_limit(text, unit_hint=hint, parameter=unknown), said=text)
 
 
 def _lacks_number(row: SheetRow, column: str, limit: Limit, intake: Intake) -> bool:
@@ -84,7 +87,7 @@ def _lacks_number(row: SheetRow, column: str, limit: Limit, intake: Intake) -> b
 def _lacks_unit(row: SheetRow, column: str, text: str, parameter: Parameter) -> bool:
     """Whether the text reads only because the parameter lends its unit, which would be a guess."""
     silent = parameter.model_copy(update={"unit": ""})
-    return row.attempt(column, lambda: parse_limit(text, parameter=silent)) is None
+    return row.attempt(column, lambda: parse_limit(text, parameter=silent), said=text) is None
 
 
 def _check_kind(row: SheetRow, column: str, limit: Limit, parameter: Parameter) -> None:

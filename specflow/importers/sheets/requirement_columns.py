@@ -39,6 +39,7 @@ _WHAT = (
     SheetColumn(
         key="statement",
         title="Statement",
+        also=("Requirement",),
         aliases=("Text", "Requirement text", "Requirement statement", "Description", "Shall statement"),
         guidance="The sentence as it stands in the specification.",
         example="The terminal shall radiate at least 45 dBm EIRP at beam peak.",
@@ -66,12 +67,31 @@ _WHAT = (
         title="Limit",
         aliases=("Limits", "Limit value", "Value", "Required value", "Requirement value", "Specification"),
         required=True,
+        instead=("minimum", "maximum"),
         guidance=(
             "As you would write it, with unit: >= 45 dBm · -28 dBc max · 54 ± 1.5 dBm · 26 +2/-3 dBm · "
             "min(-5, max(P_rated - 35, -12)) dBm max · TBR 3.2 dB · TBD"
         ),
         example=">= 45 dBm",
         width=30,
+    ),
+    SheetColumn(
+        key="minimum",
+        title="Minimum",
+        aliases=("Min", "Min.", "Lower limit", "LSL", "Min value"),
+        field="limit",
+        guidance="Instead of Limit: the least value, where the sheet has columns for least and greatest.",
+        in_template=False,
+        width=12,
+    ),
+    SheetColumn(
+        key="maximum",
+        title="Maximum",
+        aliases=("Max", "Max.", "Upper limit", "USL", "Max value"),
+        field="limit",
+        guidance="Instead of Limit: the greatest value.",
+        in_template=False,
+        width=12,
     ),
     SheetColumn(
         key="unit",

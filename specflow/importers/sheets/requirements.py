@@ -26,6 +26,7 @@ from specflow.units import convert, format_value, parse_quantity, parse_unit
 
 _ALWAYS = frozenset({"", "u", "always", "all", "unconditional"})
 _NONE = frozenset({"none", "no conditions"})
+_DEFAULT_TAKEN = "workbook-default-taken"
 _SIZES = (("GHz", 1e9), ("MHz", 1e6), ("kHz", 1e3), ("Hz", 1.0))
 
 
@@ -54,8 +55,9 @@ def _stated(row: SheetRow, requirement: Requirement) -> set[str]:
 def _requirement(row: SheetRow, intake: Intake) -> Requirement | None:
     named = known_parameter(row, "parameter", intake)
     parameter = named.parameter if named else None
-    limit = limit_cell(row, intake, "limit", parameter, hint=row.text("unit"))
-    block = _block(row, intake)
+    limit = _limit(row, intake, parameter)
+    code = _block_code(row, intake)
+    block = intake.find(Block, code)
     quantity = _quantity(row, intake, named, limit, block)
     parents, reason = _parents(row, intake)
     rule = decision_rule(row, limit, parameter)
@@ -87,13 +89,13 @@ def _requirement(row: SheetRow, intake: Intake) -> Requirement | None:
     return row.build(
         Requirement,
         id=row.subject,
-        block=row.subject if block is None else block.id,
+        block=code,
         quantity=quantity,
         limit=_with_known_tolerance(row, with_test_tolerance(row, limit), intake),
         parents=parents,
         derived_reason=reason,
         decision_rule=rule,
-        origin=row.origin("limit"),
+        origin=row.origin(_limit_column(row)),
         **fields,
     )
 
@@ -109,6 +111,41 @@ _PROSE = (
 )
 
 
+def _limit(row: SheetRow, intake: Intake, parameter: Parameter | None) -> Limit | None:
+    """The limit as typed, or put together from a least and a greatest value in columns of their own."""
+    column, hint = _limit_column(row), row.text("unit")
+    least, greatest = row.text("minimum"), row.text("maximum")
+    if column == "limit":
+        if least or greatest:
+            row.fault(column, "the limit is given, and a minimum or maximum too", "empty one of them")
+        return limit_cell(row, intake, column, parameter, hint=hint)
+    if not least and not greatest and column not in row.spoiled:
+        row.fault(column, "no limit is given", "write the least or the greatest value")
+    if column in row.spoiled:
+        return None
+    if least and greatest:
+        text = f"{least} to {greatest}"
+    else:
+        text = _one_sided(">=", least) if least else _one_sided("<=", greatest)
+    return limit_cell(row, intake, column, parameter, hint=hint, text=text)
+
+
+def _limit_column(row: SheetRow) -> str:
+    """The column whose cell holds the limit of this row."""
+    if row.text("limit") or "limit" in row.spoiled:
+        return "limit"
+    filled = [column for column in ("minimum", "maximum") if row.text(column)]
+    present = [column for column in ("limit", "minimum", "maximum") if row.has(column)]
+    return (filled or present)[0]
+
+
+def _one_sided(sign: str, text: str) -> str:
+    """A bound with its sign: ">= 45 dBm" for "45 dBm", "TBR >= 45 dBm" for "TBR 45 dBm", "TBD" for itself."""
+    if text.upper().startswith("TBR"):
+        return f"TBR {sign} {text[3:].strip()}"
+    return text if text.upper().startswith("TBD") or text.startswith(sign) else f"{sign} {text}"
+
+
 def _with_known_tolerance(row: SheetRow, limit: Limit, intake: Intake) -> Limit:
     """In a sheet without a column for it, the test tolerance stays as the project has it."""
     known = intake.snapshot.find(Requirement, row.subject)
@@ -117,24 +154,24 @@ def _with_known_tolerance(row: SheetRow, limit: Limit, intake: Intake) -> Limit:
     return limit.model_copy(update={"test_tolerance": known.limit.test_tolerance})
 
 
-def _block(row: SheetRow, intake: Intake) -> Block | None:
+def _block_code(row: SheetRow, intake: Intake) -> str | None:
     """The block that is named; the system where none is named and there is only one."""
     code = row.text("block")
     if code:
-        intake.link(row, "block", Block, code)
-        return intake.find(Block, code)
+        return intake.link(row, "block", Block, code)
     roots = [block for block in intake.all(Block) if block.parent is None]
-    if len(roots) == 1 and "block" not in row.spoiled:
+    if len(roots) != 1 or "block" in row.spoiled:
+        row.fault("block", "no block is named", "write the id of the block that the limit is on")
+        return None
+    if row.has("block") or not intake.has_found(_DEFAULT_TAKEN):
         intake.note(
             row,
             "block",
             f"no block is named; {roots[0].id} ({roots[0].name}) was taken, the only block without a parent",
             "write the id of the block that the limit is on",
-            rule="workbook-default-taken",
+            rule=_DEFAULT_TAKEN,
         )
-        return roots[0]
-    row.fault("block", "no block is named", "write the id of the block that the limit is on")
-    return None
+    return roots[0].id
 
 
 def _quantity(

@@ -196,18 +196,21 @@ class SheetRow:
         text = self.text(column)
         return self.pick(column, text, words) or default if text else default
 
-    def attempt(self, column: str, make: Callable[[], T], remedy: str = "") -> T | None:
-        """Return what ``make`` gives; an error of this package becomes a finding about the cell."""
+    def attempt(self, column: str, make: Callable[[], T], *, said: str = "") -> T | None:
+        """Return what ``make`` gives; an error of this package becomes a finding about the cell.
+
+        ``said`` is the text that was read, where it is not that of the cell.
+        """
         try:
             return make()
         except SpecflowError as error:
             message = error.message
             if error.where.startswith("column "):
-                message += f", at {error.where} of {self.text(column)!r}"
-            self.fault(column, message, error.hint or remedy or self._guidance(column))
+                message += f", at {error.where} of {said or self.text(column)!r}"
+            self.fault(column, message, error.hint or self._guidance(column))
         except ValidationError as error:
             for detail in error.errors():
-                self.fault(column, _plain(detail["msg"]), remedy or self._guidance(column))
+                self.fault(column, _plain(detail["msg"]), self._guidance(column))
         return None
 
     def build(self, document: type[D], **fields: object) -> D | None:

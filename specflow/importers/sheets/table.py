@@ -34,32 +34,37 @@ def find_header(grid: Grid, layout: SheetLayout) -> Header | None:
     """Return the first row that holds every required header, None when there is none in the first rows."""
     for row in range(grid.first_row, min(grid.last_row, grid.first_row + _HEADER_ROWS) + 1):
         header = read_header(grid, layout, row)
-        if all(column.key in header.columns for column in layout.required):
+        if not layout.lacking(header.columns):
             return header
     return None
 
 
 def read_header(grid: Grid, layout: SheetLayout, row: int) -> Header:
-    """Match the cells of one row with the columns of the layout."""
-    known = _headers(layout)
+    """Match the cells of one row with the columns of the layout.
+
+    Titles go before aliases, so that "ID" beside "Number" is the id; a header that is left over may still be what a
+    column is ``also`` called ("Requirement" beside "ID" is the statement).
+    """
+    left = {
+        place: text
+        for place, value in enumerate(grid.row(row), start=1)
+        if isinstance(value, str) and (text := clean(value))
+    }
     columns: dict[str, int] = {}
     units: dict[str, str] = {}
-    unknown: list[tuple[int, str]] = []
-    doubled: list[tuple[int, str, int]] = []
-    for place, value in enumerate(grid.row(row), start=1):
-        text = clean(value) if isinstance(value, str) else ""
-        if not text:
-            continue
-        column, unit = _match(text, known)
-        if column is None:
-            unknown.append((place, text))
-        elif column.key in columns:
-            doubled.append((place, text, columns[column.key]))
-        else:
-            columns[column.key] = place
-            if unit:
-                units[column.key] = unit
-    return Header(row, columns, units, tuple(unknown), tuple(doubled))
+    for known in _name_tables(layout):
+        for place, text in list(left.items()):
+            key, unit = _match(text, known)
+            if key is not None and key not in columns:
+                del left[place]
+                columns[key] = place
+                if unit:
+                    units[key] = unit
+    every = {name: key for known in _name_tables(layout) for name, key in known.items()}
+    known_of = {place: key for place, text in left.items() if (key := _match(text, every)[0])}
+    doubled = tuple((place, left[place], columns[key]) for place, key in known_of.items())
+    unknown = tuple((place, text) for place, text in left.items() if place not in known_of)
+    return Header(row, columns, units, unknown, doubled)
 
 
 def missing_header(grid: Grid, layout: SheetLayout, sha256: str) -> Finding:
@@ -69,8 +74,7 @@ def missing_header(grid: Grid, layout: SheetLayout, sha256: str) -> Finding:
         (read_header(grid, layout, row) for row in rows), key=lambda one: len(one.columns), default=None
     )
     found = nearest.columns if nearest else {}
-    lacking = [column for column in layout.required if column.key not in found]
-    names = "; ".join(_names(column) for column in lacking)
+    names = "; ".join(_names(column) for column in layout.lacking(found))
     seen = (
         f"the nearest to a header row is row {nearest.row}"
         if nearest and found
@@ -108,20 +112,25 @@ def read_table(
     return rows
 
 
-def _headers(layout: SheetLayout) -> dict[str, SheetColumn]:
-    return {
-        header_key(name): column
-        for column in layout.columns
-        for name in (column.title, *column.aliases)
-        if header_key(name)
-    }
+def _name_tables(layout: SheetLayout) -> tuple[dict[str, str], ...]:
+    """Header key → column key: of titles, of aliases, and of what columns are also called."""
+    return (
+        {header_key(column.title): column.key for column in layout.columns},
+        {
+            header_key(name): column.key
+            for column in layout.columns
+            for name in column.aliases
+            if header_key(name)
+        },
+        {header_key(name): column.key for column in layout.columns for name in column.also},
+    )
 
 
-def _match(text: str, known: dict[str, SheetColumn]) -> tuple[SheetColumn | None, str]:
+def _match(text: str, known: dict[str, str]) -> tuple[str | None, str]:
     """The column of a header, with the unit in its brackets; a star that marks a required column does not count."""
-    column = known.get(header_key(text))
-    if column is not None:
-        return column, ""
+    key = known.get(header_key(text))
+    if key is not None:
+        return key, ""
     parts = _BRACKET.match(text.rstrip("* "))
     if parts is None:
         return None, ""

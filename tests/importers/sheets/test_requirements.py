@@ -281,3 +281,55 @@ def test_parts_that_a_workbook_does_not_state_stay_as_the_project_has_them(tmp_p
     assert again(**{"Decision rule": "guarded 1.0 U"}).decision_rule.guard_factor == 1.0
     assert again().open_value is None
     assert again().limit.test_tolerance == first.limit.test_tolerance
+
+
+@pytest.mark.parametrize(
+    ("cells", "words"),
+    [
+        ({"Min": 20, "Unit": "dB"}, "Gain: at least 20 dB"),
+        ({"Max": "24 dB"}, "Gain: at most 24 dB"),
+        ({"Min": 20, "Max": 24, "Unit": "dB"}, "Gain: from 20 dB to 24 dB"),
+        ({"Min [dB]": "TBR 20"}, "Gain: at least 20 dB; to be reviewed (TBR)"),
+        ({"Maximum": "TBD"}, "Gain: to be determined (TBD)"),
+    ],
+)
+def test_columns_of_least_and_greatest_values_stand_in_for_the_limit(
+    tmp_path: Path, cells: dict[str, Any], words: str
+) -> None:
+    project = a_snapshot(a_block("UT", tier="system"))
+    row = {"ID": "R-1", "Block": "UT", "Parameter": "gain"} | cells
+    draft = read_sheets(tmp_path, project, requirements=[row])
+    assert not draft.findings
+    assert draft.echoes["R-1"].startswith(words)
+    (found,) = [one for one in draft.documents if isinstance(one, Requirement)]
+    assert found.origin is not None
+    assert found.origin.cell == "D2"
+
+
+@pytest.mark.parametrize(
+    ("cells", "words"),
+    [
+        ({"Min": 24, "Max": 20, "Unit": "dB"}, "the lower end of the range is above the upper one"),
+        ({"Min": None}, "no limit is given"),
+        ({"Min": 20}, "no unit"),
+        ({"Min": "20 dB", "Limit": ">= 20 dB"}, "and a minimum or maximum too"),
+    ],
+)
+def test_least_and_greatest_values_that_say_no_limit_are_one_finding(
+    tmp_path: Path, cells: dict[str, Any], words: str
+) -> None:
+    row = {"ID": "R-1", "Block": "UT", "Parameter": "gain"} | cells
+    (finding,) = read_sheets(tmp_path, a_snapshot(a_block("UT")), requirements=[row]).findings
+    assert words in finding.message
+
+
+def test_a_column_called_requirement_is_the_statement_beside_an_id(tmp_path: Path) -> None:
+    found = requirement(tmp_path, Requirement="The terminal shall radiate enough.")
+    assert (found.id, found.statement) == ("R-1", "The terminal shall radiate enough.")
+
+
+def test_a_missing_block_column_is_said_once(tmp_path: Path) -> None:
+    rows = [{"ID": f"R-{n}", "Parameter": "gain", "Limit": ">= 20 dB"} for n in range(5)]
+    draft = read_sheets(tmp_path, a_snapshot(a_block("UT")), requirements=rows)
+    assert [one.rule for one in draft.findings] == ["workbook-default-taken"]
+    assert sum(isinstance(one, Requirement) for one in draft.documents) == 5

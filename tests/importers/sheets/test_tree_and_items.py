@@ -38,6 +38,13 @@ def test_a_block_without_a_tier_has_that_of_its_place_in_the_tree(tmp_path: Path
     assert tiers == {"UT": Tier.SYSTEM, "TX": Tier.ASSEMBLY, "PA": Tier.BLOCK, "LO": Tier.ASSEMBLY}
 
 
+def test_blocks_stand_in_the_order_of_their_rows_below_each_parent(tmp_path: Path) -> None:
+    rows = [UT, {"ID": "TX", "Parent": "UT"}, {"ID": "PA", "Parent": "TX"}, {"ID": "RX", "Parent": "UT"}]
+    draft = read_sheets(tmp_path, blocks=rows)
+    orders = {one.id: one.order for one in draft.documents if isinstance(one, Block)}
+    assert orders == {"UT": 1, "TX": 1, "PA": 1, "RX": 2}
+
+
 def test_a_block_with_everything(tmp_path: Path) -> None:
     row = {
         "Block ID": "PA",
