@@ -2,7 +2,10 @@
 
 from __future__ import annotations
 
+import re
+
 from specflow.conditions import find_dimension
+from specflow.errors import ExpressionError
 from specflow.importers.sheets.intake import Intake
 from specflow.importers.sheets.row import SheetRow
 from specflow.importers.sheets.spelling import near
@@ -43,7 +46,7 @@ def limit_cell(
     )
     if limit is None or _lacks_number(row, column, limit, intake):
         return None
-    if not hint and _lacks_unit(row, column, text, parameter):
+    if not hint and _lacks_unit(row, column, text, limit, parameter, intake):
         return None
     _check_kind(row, column, limit, parameter)
     return limit
@@ -84,10 +87,29 @@ def _lacks_number(row: SheetRow, column: str, limit: Limit, intake: Intake) -> b
     return False
 
 
-def _lacks_unit(row: SheetRow, column: str, text: str, parameter: Parameter) -> bool:
-    """Whether the text reads only because the parameter lends its unit, which would be a guess."""
+def _lacks_unit(
+    row: SheetRow, column: str, text: str, limit: Limit, parameter: Parameter, intake: Intake
+) -> bool:
+    """Whether the text reads only because the parameter lends its unit, which would be a guess.
+
+    A declared value brings a unit of its own, so "P_rated ± 3.4 dB" lacks none.
+    """
+    units = {value.name: value.unit for value in intake.all(DeclaredValue)}
+    for name in limit_inputs(limit):
+        if find_dimension(name) is None:
+            text = re.sub(rf"\b{re.escape(name)}\b(?!\[)", f"1 {units.get(name, parameter.unit)}", text)
     silent = parameter.model_copy(update={"unit": ""})
-    return row.attempt(column, lambda: parse_limit(text, parameter=silent), said=text) is None
+    try:
+        parse_limit(text, parameter=silent)
+    except ExpressionError:
+        row.fault(
+            column,
+            f"the limit {limit.text!r} has no unit",
+            "write it after the number, as in '45 dBm'; 1 for a plain number",
+            rule="workbook-no-unit",
+        )
+        return True
+    return False
 
 
 def _check_kind(row: SheetRow, column: str, limit: Limit, parameter: Parameter) -> None:

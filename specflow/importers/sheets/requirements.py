@@ -228,7 +228,7 @@ def _bandwidth(row: SheetRow, intake: Intake, parameter: Parameter, limit: Limit
     ):
         intake.note(
             row,
-            "bandwidth",
+            "bandwidth" if row.has("bandwidth") else _limit_column(row),
             f"{parameter.title} means little without a reference bandwidth, and none is stated",
             "write it in the column Reference bandwidth, as 1 MHz, or in the unit of the limit, as dBm/MHz",
             rule="workbook-no-bandwidth",

@@ -47,6 +47,11 @@ def requirement(tmp_path: Path, **cells: Any) -> Requirement:
         ("noise_figure", "TBD", "to be determined (TBD)"),
         ("evm", "8 %", "at most 8 %"),
         ("vswr", "1.5 max", "at most 1.5"),
+        ("eirp", "P_rated ± 3.4 dB", "P_rated dBm ± 3.4 dB"),
+        ("eirp", "<= P_rated + 2 dB", "at most (P_rated + 2 dB) dBm"),
+        ("aclr", ">= 28 dB or -13 dBm/MHz whichever is looser", "whichever is less stringent"),
+        ("evm", "17.5 % max if modulation == QPSK", "only where modulation is QPSK"),
+        ("spurious_emission", "-36 dBm/100 kHz max", "at most -36 dBm/100 kHz"),
     ],
 )
 def test_limits_are_typed_as_engineers_write_them(
@@ -241,8 +246,16 @@ def test_a_limit_of_another_kind_is_refused_naming_both_units(tmp_path: Path) ->
 
 def test_a_bare_number_takes_its_unit_from_the_unit_column_only(tmp_path: Path) -> None:
     assert requirement(tmp_path, Limit=">= 45", Unit="dBm").limit.unit == "dBm"
-    (finding,) = load(tmp_path, Limit=">= 45").findings
-    assert "no unit" in finding.message
+
+
+@pytest.mark.parametrize(
+    "text",
+    [">= 45", "45..48", ">= 45 if frequency > 28 GHz", "TBR >= 45", ">= 40 and <= 45", "max(40, 45) min"],
+)
+def test_a_limit_without_any_unit_is_refused_though_its_parameter_has_one(tmp_path: Path, text: str) -> None:
+    (finding,) = load(tmp_path, Limit=text).findings
+    assert finding.rule == "workbook-no-unit"
+    assert text in finding.message
 
 
 def test_the_layout_of_requirements_has_every_column_the_process_asks_for() -> None:
