@@ -13,7 +13,7 @@ from specflow.errors import ExitCode, SpecflowError
 if TYPE_CHECKING:
     import typer
 
-PIPED_WIDTH = 240  # a pipe has no width; wide enough that no cell of ours is folded
+PIPED_WIDTH = 10_000  # a pipe has no width; so wide that no row of ours is folded
 
 
 def say(text: str = "") -> None:

@@ -39,7 +39,7 @@ def put_table(table: ReportTable) -> None:
     if table.title:
         console.print(Text(table.title, style="bold underline"))
     if table.intro:
-        console.print(Padding(Text(table.intro), (0, 0, 1, 0)))
+        console.print(Padding(Text(table.intro), (0, 0, 1, 0), expand=False))
     console.print(grid)
 
 

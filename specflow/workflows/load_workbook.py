@@ -37,12 +37,13 @@ def preview_load(store: ProjectStore, path: Path) -> LoadPreview:
     snapshot = store.load()
     draft = read_workbook(path, snapshot, project_dictionary(snapshot))
     changes = diff(snapshot, draft.documents)
+    given = sum(change.action in ("add", "edit") for change in changes)
     return LoadPreview(
         path,
         changes,
         draft.findings,
         draft.echoes,
-        unchanged=len(draft.documents) - len(changes),
+        unchanged=len(draft.documents) - given,
         project_revision=snapshot.revision,
     )
 
@@ -50,14 +51,22 @@ def preview_load(store: ProjectStore, path: Path) -> LoadPreview:
 def accept_load(store: ProjectStore, preview: LoadPreview, *, by: str, take_rest: bool = False) -> int:
     """Store the changes in one transaction; return the new project revision.
 
-    Raises DocumentError when something was rejected and the person has not said to take the rest.
+    Raises DocumentError when something was rejected and the person has not said to take the rest, ConflictError when
+    somebody changed the same documents since the preview.
     """
-    if preview.rejected and not take_rest:
-        raise DocumentError(
-            f"{len(preview.rejected)} rows or cells were rejected; nothing was stored",
-            where=str(preview.path),
-            hint="mend them in the workbook, or say --take-rest to store what could be read",
-        )
+    refuse_rejected(preview, take_rest=take_rest)
     if not preview.changes:
         return preview.project_revision
     return store.apply(preview.changes, by=by, reason=f"loaded from {preview.path.name}")
+
+
+def refuse_rejected(preview: LoadPreview, *, take_rest: bool) -> None:
+    """Raise DocumentError when something was rejected, unless the person has said to take the rest."""
+    rejected = len(preview.rejected)
+    if rejected and not take_rest:
+        raise DocumentError(
+            f"{rejected} row{'s' * (rejected != 1)} or cell{'s' * (rejected != 1)} "
+            f"{'were' if rejected != 1 else 'was'} rejected; nothing was stored",
+            where=str(preview.path),
+            hint="mend them in the workbook, or say --take-rest to store what could be read",
+        )
