@@ -175,6 +175,9 @@ def status_from(
         ambiguous=found.ambiguous if found is not None else (),
         conflicts=found.conflicts if found is not None else (),
         mismatches=found.mismatches if found is not None else (),
+        stale=facts.stale,
+        unallocated=facts.unallocated and facts.applicable,
+        waivers_exceeded=facts.waiving.exceeded,
     )
 
 

@@ -6,6 +6,7 @@ from datetime import date
 
 from specflow.model.base import Document
 from specflow.model.evidence import EvidenceColumns
+from specflow.model.parameter import Parameter
 from specflow.model.snapshot import Results
 from specflow.model.verdict import RequirementStatus
 from specflow.parameters import load_dictionary
@@ -42,7 +43,7 @@ def results_of(*documents: Document, **columns: EvidenceColumns) -> Results:
         if name not in known
     ]
     snapshot = a_snapshot(*project(*documents), *tables, columns=named)
-    return evaluate(snapshot, load_dictionary([a_parameter()]), as_of=AS_OF)
+    return evaluate(snapshot, load_dictionary([a_parameter(), *snapshot.all(Parameter)]), as_of=AS_OF)
 
 
 def status_of(
