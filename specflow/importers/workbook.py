@@ -36,11 +36,7 @@ def read_workbook(path: str | Path, snapshot: Snapshot, dictionary: Dictionary) 
     """
     file = open_grids(path)
     intake = Intake(snapshot, dictionary)
-    tables = [
-        (sheet, rows)
-        for sheet, grid in _recognised(file, intake.findings)
-        if (rows := _rows(sheet, grid, file.fingerprint.sha256, intake.findings)) is not None
-    ]
+    tables = _tables(_recognised(file, intake.findings), file.fingerprint.sha256, intake.findings)
     for sheet, rows in tables:
         sheet.identify_rows(rows, intake)
     for sheet, rows in tables:
@@ -69,7 +65,7 @@ def _recognised(file: GridFile, findings: list[Finding]) -> list[Found]:
         sheet = known.get(name) or known.get(_NUMBERED.sub("", name))
         if sheet is not None:
             named.append((sheet, grid))
-        elif any(not is_blank(value) for row in grid.rows for value in row) and name != header_key(GUIDE):
+        elif _has_content(grid) and name != header_key(GUIDE):
             others.append(grid)
     if not named:
         named, others = _by_headers(others, findings)
@@ -104,25 +100,44 @@ def _by_headers(grids: Sequence[Grid], findings: list[Finding]) -> tuple[list[Fo
     return named, others
 
 
-def _rows(sheet: Sheet, grid: Grid, sha256: str, findings: list[Finding]) -> list[SheetRow] | None:
-    findings.extend(_about(grid, note, "", "workbook-reading") for note in grid.notes)
-    if grid.hidden:
-        findings.append(
-            _about(
-                grid,
-                f"the sheet {grid.name} is hidden and was not read",
-                "show the sheet and load again, or delete it",
-                "workbook-hidden-sheet",
-                Severity.ERROR,
+def _tables(
+    found: Sequence[Found], sha256: str, findings: list[Finding]
+) -> list[tuple[Sheet, list[SheetRow]]]:
+    """The rows of each sheet. A sheet that lacks headers is refused; one that is only called much like a sheet of the
+    workbook ("Specification") is left aside, if another was read."""
+    tables: list[tuple[Sheet, list[SheetRow]]] = []
+    lacking: list[tuple[bool, Finding]] = []
+    for sheet, grid in found:
+        findings.extend(_about(grid, note, "", "workbook-reading") for note in grid.notes)
+        header = find_header(grid, sheet.layout)
+        if grid.hidden:
+            findings.append(_hidden(grid))
+        elif header is not None:
+            tables.append((sheet, read_table(grid, sheet.layout, header, sha256, findings)))
+        elif _has_content(grid):
+            own_name = header_key(grid.name) in (
+                header_key(sheet.layout.title),
+                header_key(sheet.layout.noun),
             )
-        )
-        return None
-    header = find_header(grid, sheet.layout)
-    if header is not None:
-        return read_table(grid, sheet.layout, header, sha256, findings)
-    if any(not is_blank(value) for row in grid.rows for value in row):
-        findings.append(missing_header(grid, sheet.layout, sha256))
-    return None
+            lacking.append((own_name, missing_header(grid, sheet.layout, sha256)))
+    for own_name, finding in lacking:
+        aside = bool(tables) and not own_name
+        findings.append(finding.model_copy(update={"severity": Severity.WARNING}) if aside else finding)
+    return tables
+
+
+def _has_content(grid: Grid) -> bool:
+    return any(not is_blank(value) for row in grid.rows for value in row)
+
+
+def _hidden(grid: Grid) -> Finding:
+    return _about(
+        grid,
+        f"the sheet {grid.name} is hidden and was not read",
+        "show the sheet and load again, or delete it",
+        "workbook-hidden-sheet",
+        Severity.ERROR,
+    )
 
 
 def _nothing_known(file: GridFile) -> FileError:

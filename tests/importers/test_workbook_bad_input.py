@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import time
 from collections.abc import Callable, Mapping
 from datetime import datetime
 from pathlib import Path
@@ -17,7 +18,7 @@ from specflow.model.draft import Draft
 from specflow.model.finding import Finding, Severity
 from specflow.model.requirement import Requirement
 from specflow.parameters import load_dictionary
-from tests.builders import a_snapshot, project_workbook, read_sheets
+from tests.builders import a_block, a_snapshot, project_workbook, read_sheets
 
 BLOCKS = [{"ID": "UT", "Name": "Invented terminal"}]
 REQUIREMENT = {"ID": "R-1", "Block": "UT", "Parameter": "eirp", "Limit": ">= 45 dBm"}
@@ -309,3 +310,45 @@ def test_a_file_that_is_no_workbook_is_refused_by_name(tmp_path: Path, content: 
 def test_a_missing_file_is_refused_by_name(tmp_path: Path) -> None:
     with pytest.raises(FileError, match=r"nowhere\.xlsx"):
         read(tmp_path / "nowhere.xlsx")
+
+
+def test_a_sheet_that_is_only_called_much_like_one_is_left_aside_if_another_is_read(tmp_path: Path) -> None:
+    prose = [{"Chapter": 1, "Text": "This specification is invented."}]
+    beside = read_sheets(tmp_path, blocks=BLOCKS, specification=prose)
+    assert [(one.rule, one.severity) for one in beside.findings] == [
+        ("workbook-missing-column", Severity.WARNING)
+    ]
+    alone = read_sheets(tmp_path, specification=prose)
+    assert [(one.rule, one.severity) for one in alone.findings] == [
+        ("workbook-missing-column", Severity.ERROR)
+    ]
+
+
+def test_a_hidden_column_is_read_and_reported(tmp_path: Path) -> None:
+    path = project_workbook(tmp_path / "a.xlsx", blocks=BLOCKS, requirements=[REQUIREMENT])
+
+    def hide(sheet: Worksheet) -> None:
+        sheet.column_dimensions["D"].hidden = True
+
+    draft = read(edited(path, "Requirements", hide))
+    assert [(one.rule, one.severity) for one in draft.findings] == [
+        ("workbook-hidden-column", Severity.WARNING)
+    ]
+    assert any(isinstance(one, Requirement) for one in draft.documents)
+
+
+def test_comment_lines_of_a_csv_file_are_no_rows(tmp_path: Path) -> None:
+    path = tmp_path / "requirements.csv"
+    path.write_text("# invented\nID,Block,Parameter,Limit\nR-1,UT,eirp,>= 45 dBm\n# the end\n", "utf-8")
+    draft = read_workbook(path, a_snapshot(a_block("UT")), load_dictionary())
+    assert not rejected(draft)
+    assert sum(isinstance(one, Requirement) for one in draft.documents) == 1
+
+
+def test_one_mistake_repeated_a_thousand_times_is_reported_in_moments(tmp_path: Path) -> None:
+    rows = [REQUIREMENT | {"ID": f"R-{number}", "Parents": f"Q-{number}"} for number in range(1000)]
+    path = project_workbook(tmp_path / "a.xlsx", blocks=BLOCKS, requirements=rows)
+    started = time.perf_counter()
+    draft = read(path)
+    assert time.perf_counter() - started < 10.0
+    assert len(rejected(draft)) == 1000

@@ -12,7 +12,7 @@ from specflow.model.sheet import SheetColumn, SheetLayout
 LAYOUT = SheetLayout(
     noun="activity",
     title="Activities",
-    aliases=("Activity", "Verification activities", "Verification plan", "Verification"),
+    aliases=("Activity", "Verification activities", "Verification plan"),
     intro="Planned verifications: one method at one stage a row. A requirement may have several; all must succeed.",
     columns=(
         MARK_COLUMN,

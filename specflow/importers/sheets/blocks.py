@@ -23,7 +23,7 @@ _PLANE = re.compile(r"^(?P<name>[^()]+?)\s*(?:\((?P<convention>[^()]*)\))?$")
 LAYOUT = SheetLayout(
     noun="block",
     title="Blocks",
-    aliases=("Block", "Product tree", "Block list", "Architecture"),
+    aliases=("Block", "Product tree", "Block list"),
     intro="The product tree: one row a block (a type, not a specimen). The block without a parent is the system.",
     columns=(
         MARK_COLUMN,

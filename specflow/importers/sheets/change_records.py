@@ -17,7 +17,7 @@ _ASPECTS: tuple[str, ...] = get_args(ItemChange.model_fields["aspect"].annotatio
 LAYOUT = SheetLayout(
     noun="item_change",
     title="Change records",
-    aliases=("Changes", "Change record", "Item changes", "Hardware changes"),
+    aliases=("Change record", "Item changes", "Hardware changes"),
     intro="What changed of a block or one item, and when. Evidence of the named parameters from before it is stale.",
     columns=(
         MARK_COLUMN,

@@ -15,7 +15,7 @@ from specflow.model.sheet import SheetColumn, SheetLayout
 LAYOUT = SheetLayout(
     noun="condition_map",
     title="Condition maps",
-    aliases=("Condition map", "Conditions maps", "Maps"),
+    aliases=("Condition map", "Conditions maps"),
     intro="How system conditions become the conditions of a block. One formula a row; rows with one ID are one map.",
     columns=(
         MARK_COLUMN,

@@ -22,6 +22,8 @@ from specflow.parameters import Dictionary
 
 D = TypeVar("D", bound=Document)
 
+_MOST_SEARCHES = 200  # a search compares with every id of the project: 10 ms at 2,000 ids
+
 
 @dataclass
 class Intake:
@@ -39,6 +41,7 @@ class Intake:
     documents: dict[str, dict[str, Document]] = field(default_factory=dict)
     codes: dict[str, dict[str, tuple[str, SheetRow, str]]] = field(default_factory=dict)
     shorthand: dict[str, list[Activity]] = field(default_factory=dict)
+    _nearest: dict[tuple[str, str], str] = field(default_factory=dict)
 
     def register(
         self, kind: type[Document], code: str, row: SheetRow, column: str, *, grouped: bool = False
@@ -125,7 +128,7 @@ class Intake:
             noun = NOUN_BY_DOCUMENT[kind]
             row.fault(
                 column,
-                f"there is no {noun.title} {code}" + near(code, self._spellings(kind)),
+                f"there is no {noun.title} {code}" + self._near(kind, code),
                 f"write the id of a {noun.title} of the project, or add it to this workbook",
                 rule="workbook-unknown-reference",
             )
@@ -149,6 +152,14 @@ class Intake:
     def has_found(self, rule: str) -> bool:
         """Whether that rule reported anything so far."""
         return any(finding.rule == rule for finding in self.findings)
+
+    def _near(self, kind: type[Document], code: str) -> str:
+        """The nearest ids; looked for once a code, because a sheet may repeat one mistake a thousand times."""
+        asked = (NOUN_BY_DOCUMENT[kind].name, code_key(code))
+        if asked not in self._nearest:
+            few = len(self._nearest) < _MOST_SEARCHES
+            self._nearest[asked] = near(code, self._spellings(kind)) if few else ""
+        return self._nearest[asked]
 
     def _spellings(self, kind: type[Document]) -> list[str]:
         noun = NOUN_BY_DOCUMENT[kind]

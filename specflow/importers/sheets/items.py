@@ -11,7 +11,7 @@ from specflow.model.sheet import SheetColumn, SheetLayout
 LAYOUT = SheetLayout(
     noun="item",
     title="Items",
-    aliases=("Item", "Specimens", "Hardware", "Serials", "DUTs", "Samples"),
+    aliases=("Item", "Specimens", "Serials", "DUTs"),
     intro="Physical specimens: one row each, with the build that was tested.",
     columns=(
         MARK_COLUMN,

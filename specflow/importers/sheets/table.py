@@ -104,7 +104,9 @@ def read_table(
     rows = [
         SheetRow(grid, layout, number, header.columns, header.units, sha256, findings)
         for number in range(header.row + 1, grid.last_row + 1)
-        if _holds_something(grid, number, header) and not _is_example(grid, number, header)
+        if number not in grid.comment_rows
+        and _holds_something(grid, number, header)
+        and not _is_example(grid, number, header)
     ]
     _report_hidden(rows, grid)
     _spoil_headings(rows)
@@ -171,6 +173,19 @@ def _report_headers(
                 origin=_origin(grid, sha256, header.row, place),
             )
         )
+    for key, place in header.columns.items():
+        if place in grid.hidden_columns:
+            findings.append(
+                Finding(
+                    rule="workbook-hidden-column",
+                    severity=Severity.WARNING,
+                    subject=layout.title,
+                    subject_kind=layout.noun,
+                    message=f"the column {layout.column(key).title} is hidden, and was read all the same",
+                    remedy="show it and check what it says, or delete it",
+                    origin=_origin(grid, sha256, header.row, place),
+                )
+            )
     for place, text, first in header.doubled:
         findings.append(
             Finding(
