@@ -13,7 +13,6 @@ import typer
 from specflow.cli.commands import HELP_NAMES, CommandGroup
 from specflow.cli.console import run
 
-
 TAGLINE = "Which limit is proved, at which condition, by which number? From radio specification to evidence."
 
 

@@ -54,14 +54,23 @@ def put_report(report: Report) -> None:
         print(f"! {caution}")
 
 
+def report_as_json(report: Report) -> dict[str, Any]:
+    """Return a report as an object: its facts by name, and each table under its key."""
+    facts = dict(report.facts)
+    tables = {table.key: table_as_json(table) for table in report.tables}
+    return {"title": report.title, "subtitle": report.subtitle, "facts": facts, **tables}
+
+
 def table_as_json(table: ReportTable) -> list[dict[str, Any]]:
-    """Return the rows as objects: the number where there is one, else the text; the origin beside it."""
+    """Return the rows as objects: the text shown, and beside it (``_number``, ``_origin``) what is behind it."""
     rows: list[dict[str, Any]] = []
     for row in table.rows:
-        fields: dict[str, Any] = {}
+        fields: dict[str, Any] = {"depth": row.depth} if row.depth else {}
         for column, cell in zip(table.columns, row.cells, strict=True):
-            fields[column.key] = cell.text if cell.number is None else cell.number
+            fields[column.key] = cell.text
+            if cell.number is not None:
+                fields[f"{column.key}_number"] = cell.number
             if cell.origin is not None:
-                fields[f"{column.key}_origin"] = str(cell.origin)
+                fields[f"{column.key}_origin"] = cell.origin.model_dump(exclude_defaults=True)
         rows.append(fields)
     return rows

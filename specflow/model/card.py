@@ -19,31 +19,59 @@ class PointState(StrEnum):
     MISSING = "missing"
 
 
-class MarginBar(Document):
-    """Limit, guard band and spread of results on one axis, in ``unit``; None where there is none."""
+class BarAxis(StrEnum):
+    """What a margin bar is drawn over: values, or margins where the limit differs from point to point."""
 
+    VALUE = "value"
+    MARGIN = "margin"
+
+
+class MarginBar(Document):
+    """Limit, guard band and spread of results on one axis, in ``unit``; None where there is none.
+
+    ``guard`` is the widest guard band (in the unit of margins). ``words`` says the same in one sentence; the texts are
+    the numbers as they are shown.
+    """
+
+    axis: BarAxis = BarAxis.VALUE
     unit: str
     lower: float | None = None
     upper: float | None = None
     guard: float = 0.0
     least: float | None = None
     greatest: float | None = None
+    lower_text: str = ""
+    upper_text: str = ""
+    least_text: str = ""
+    greatest_text: str = ""
+    words: str = ""
 
 
 class ProofCell(Document):
-    """One required point: what it is in words, its state, and the value that governs it."""
+    """One required point: what it is in words, its state, and the value that governs it.
+
+    ``verdict`` says the state in words, ``item`` whose value it is, ``origin`` where it stands, and ``lacks`` what is
+    missing where nothing proves the point.
+    """
 
     words: str
     state: PointState
+    verdict: str = ""
     value: str = ""
     margin: str = ""
+    item: str = ""
+    origin: str = ""
+    lacks: str = ""
 
 
 class ProofGrid(Document):
-    """Required points as cells, in rows of ``row_titles`` and columns of ``column_titles`` where two dimensions
-    vary; otherwise one row. A cell is None where the combination is not required.
+    """Required points of one activity and item as cells: rows of ``row_titles``, columns of ``column_titles``.
+
+    Where no two dimensions vary there is one row without titles. A cell is None where the combination is not required.
+    ``title`` names activity and item with k of n.
     """
 
+    title: str = ""
     row_dimension: str = ""
     column_dimension: str = ""
     row_titles: tuple[str, ...] = ()
@@ -80,7 +108,7 @@ class Card(Document):
     n: int
     facts: tuple[tuple[str, str], ...] = ()
     bar: MarginBar | None = None
-    grid: ProofGrid | None = None
+    grids: tuple[ProofGrid, ...] = ()
     trail: tuple[TrailStep, ...] = ()
     remarks: tuple[str, ...] = ()
     findings: tuple[Finding, ...] = ()

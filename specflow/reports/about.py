@@ -3,10 +3,12 @@
 from __future__ import annotations
 
 import platform
+from collections.abc import Iterator
 from importlib.metadata import version
 
 from specflow import __version__
 from specflow.model.evidence import EvidenceFile
+from specflow.model.origin import Origin
 from specflow.model.report import ReportCell, ReportColumn, ReportRow, ReportTable
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Results, Snapshot
@@ -63,11 +65,7 @@ def is_radiated(requirement: Requirement, dictionary: Dictionary) -> bool:
 
 def about_table(snapshot: Snapshot, results: Results, dictionary: Dictionary) -> ReportTable:
     """Return facts, input files with their hashes, and cautions as one table."""
-    pairs = [*about_facts(snapshot, results)]
-    pairs.extend(
-        (f"Input file {file.id}", f"{file.name}, {file.size} bytes, SHA-256 {file.sha256}")
-        for file in snapshot.all(EvidenceFile)
-    )
+    pairs = [*about_facts(snapshot, results), *input_files(snapshot)]
     pairs.extend(("Caution", line) for line in cautions(snapshot, dictionary))
     return ReportTable(
         key="about",
@@ -80,3 +78,17 @@ def about_table(snapshot: Snapshot, results: Results, dictionary: Dictionary) ->
             ReportRow(id=name, cells=(ReportCell(text=name), ReportCell(text=value))) for name, value in pairs
         ),
     )
+
+
+def input_files(snapshot: Snapshot) -> Iterator[tuple[str, str]]:
+    """Give the files that the project was made from: the workbooks that documents came from, and all evidence."""
+    workbooks = {
+        (origin.file, origin.sha256): None
+        for documents in snapshot.documents.values()
+        for document in documents.values()
+        if isinstance(origin := getattr(document, "origin", None), Origin)
+    }
+    for name, sha256 in sorted(workbooks):
+        yield "Input workbook", f"{name}, SHA-256 {sha256}" if sha256 else name
+    for file in snapshot.all(EvidenceFile):
+        yield f"Evidence file {file.id}", f"{file.name}, {file.size} bytes, SHA-256 {file.sha256}"

@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+from specflow.model.base import code_key
 from specflow.model.evidence import EvidenceFile, EvidenceTable, ValueColumn
 from specflow.model.origin import column_letters
 from specflow.model.report import Align, CellTone, ReportCell, ReportColumn, ReportRow, ReportTable
 from specflow.model.snapshot import Results, Snapshot
 from specflow.reports.figures import text
+from specflow.reports.serving import Served, requirements_served
 
 EVIDENCE_COLUMNS = (
     ReportColumn(key="table", title="Table", width=12),
@@ -17,6 +19,7 @@ EVIDENCE_COLUMNS = (
     ReportColumn(key="column", title="Column", width=8),
     ReportColumn(key="unit", title="Unit", width=10),
     ReportColumn(key="unit_from", title="Unit found in", width=22),
+    ReportColumn(key="conversions", title="Conversions applied", width=30),
     ReportColumn(key="uncertainty", title="Uncertainty from", width=30),
     ReportColumn(key="rows", title="Rows", align=Align.RIGHT, width=8),
     ReportColumn(key="method", title="Method", width=12),
@@ -24,24 +27,38 @@ EVIDENCE_COLUMNS = (
     ReportColumn(key="performer", title="Performed by", width=18),
     ReportColumn(key="performed_on", title="Performed on", width=13),
     ReportColumn(key="accepted", title="Accepted by", width=18),
-    ReportColumn(key="serves", title="Serves", width=30),
+    ReportColumn(key="serves", title="Serves", width=34, explains="requirements, points governed"),
     ReportColumn(key="sha256", title="SHA-256 of the file", width=66),
+)
+EVIDENCE_INTRO = (
+    "One row a recorded quantity. Values are kept as written; the hash says which bytes the file was."
 )
 
 
 def evidence_table(snapshot: Snapshot, results: Results) -> ReportTable:
     """Return one row a recorded quantity."""
-    files = {file.id: file for file in snapshot.all(EvidenceFile)}
+    files = {code_key(file.id): file for file in snapshot.all(EvidenceFile)}
+    served = requirements_served(snapshot, results)
     rows = tuple(
-        _row(table, column, files.get(table.file), results)
+        _row(table, column, files.get(code_key(table.file)), _serves(table, results, served))
         for table in snapshot.tables
         for column in table.values
     )
-    return ReportTable(key="evidence", title="Evidence", columns=EVIDENCE_COLUMNS, rows=rows)
+    return ReportTable(
+        key="evidence", title="Evidence", intro=EVIDENCE_INTRO, columns=EVIDENCE_COLUMNS, rows=rows
+    )
 
 
-def _row(table: EvidenceTable, column: ValueColumn, file: EvidenceFile | None, results: Results) -> ReportRow:
-    unmatched = results.unmatched.get(table.id, "")
+def _serves(table: EvidenceTable, results: Results, served: Served) -> ReportCell:
+    governed = served.get(code_key(table.id), {})
+    if governed:
+        return text(", ".join(f"{requirement} ({count})" for requirement, count in governed.items()))
+    return text(results.unmatched.get(table.id) or "governs no required point", CellTone.DOUBTFUL)
+
+
+def _row(
+    table: EvidenceTable, column: ValueColumn, file: EvidenceFile | None, serves: ReportCell
+) -> ReportRow:
     return ReportRow(
         id=table.id,
         cells=(
@@ -53,6 +70,7 @@ def _row(table: EvidenceTable, column: ValueColumn, file: EvidenceFile | None, r
             text(column_letters(column.column)),
             text(column.unit),
             text(column.unit_from),
+            text("; ".join(column.conversions)),
             text(column.uncertainty_from),
             ReportCell(text=str(table.rows), number=float(table.rows)),
             text(table.method.value),
@@ -60,7 +78,7 @@ def _row(table: EvidenceTable, column: ValueColumn, file: EvidenceFile | None, r
             text(table.performer),
             text(table.performed_on or ""),
             text(f"{table.accepted_by} {table.accepted_at}".strip()),
-            text(unmatched, CellTone.DOUBTFUL) if unmatched else text("a requirement"),
+            serves,
             text(file.sha256 if file else ""),
         ),
     )

@@ -3,10 +3,12 @@
 from __future__ import annotations
 
 import math
+from decimal import ROUND_HALF_UP, Decimal
 
 from specflow.model.report import CellTone, ReportCell
 from specflow.model.verdict import Compliance, Label, Verdict
 
+CLOSENESS = 1e-9  # nearer to the limit than this is on the limit (see units): not worth a minus sign
 DASH = "–"  # shown where there is nothing to show
 
 LABEL_TONES = {
@@ -47,16 +49,32 @@ def verdict_tone(verdict: Verdict) -> CellTone:
     return VERDICT_TONES.get(verdict, CellTone.DOUBTFUL)
 
 
-def rounded(value: float) -> str:
-    """Round a number for reading: two decimals near ordinary dB figures, four significant digits elsewhere."""
+def rounded(value: float, decimals: int | None = None) -> str:
+    """Round a number for reading: two decimals near ordinary dB figures, four significant digits elsewhere.
+
+    Halves go away from zero, as in spreadsheet programs, so that a cell that holds the number shows the same text.
+    Trailing zeros are kept where something was rounded away, or where ``decimals`` asks for a number of them.
+    """
     if not math.isfinite(value):
         return "no bound" if math.isinf(value) else DASH
     size = abs(value)
-    if size and (size >= 10_000 or size < 0.01):
+    if size and (size >= 1e7 or size < 0.001):
         return f"{value:.4g}"
-    decimals = 2 if size < 1000 else 1
-    text = f"{value:.{decimals}f}"
-    return text.rstrip("0").rstrip(".") if float(text) == round(value) else text
+    exact = Decimal(repr(value))
+    fixed = decimals is not None and (size == 0 or size >= 0.01)
+    places = decimals if decimals is not None and fixed else _places(size)
+    shown = exact.quantize(Decimal(1).scaleb(-places), ROUND_HALF_UP)
+    if not fixed and shown == exact:
+        shown = shown.normalize()
+    return f"{shown + 0:f}"
+
+
+def _places(size: float) -> int:
+    if size == 0 or size >= 10_000:
+        return 0
+    if size < 0.01:
+        return 5
+    return 2 if size < 1000 else 1
 
 
 def with_unit(value: float, unit: str) -> str:
@@ -86,16 +104,27 @@ def margin(value: float, unit: str) -> ReportCell:
         return ReportCell(text=DASH, tone=CellTone.QUIET)
     if math.isinf(value):
         return ReportCell(text="unbounded", tone=CellTone.QUIET)
+    if abs(value) < CLOSENESS:
+        value = 0.0
     tone = CellTone.BAD if value < 0 else CellTone.PLAIN
     sign = "+" if value >= 0 else ""
-    return ReportCell(text=f"{sign}{with_unit(value, unit)}", number=value, tone=tone)
+    shown = rounded(value, 2)
+    text = shown if unit in ("", "1") else f"{shown} {unit}"
+    return ReportCell(text=f"{sign}{text}", number=value, tone=tone)
 
 
 def number(value: float, unit: str) -> ReportCell:
-    """Return a value as a cell."""
+    """Return a value as a cell; without one, a dash."""
     if not math.isfinite(value):
         return ReportCell(text=with_unit(value, unit) if math.isinf(value) else DASH, tone=CellTone.QUIET)
     return ReportCell(text=with_unit(value, unit), number=value)
+
+
+def reading(low: float, high: float, unit: str) -> ReportCell:
+    """Return a reading as a cell; only one that is a single value has a number."""
+    shown = interval(low, high, unit)
+    tone = CellTone.QUIET if shown == DASH else CellTone.PLAIN
+    return ReportCell(text=shown, number=low if low == high and math.isfinite(low) else None, tone=tone)
 
 
 def text(words: object, tone: CellTone = CellTone.PLAIN) -> ReportCell:

@@ -40,10 +40,14 @@ def _row(finding: Finding) -> ReportRow:
         cells=(
             ReportCell(text=finding.severity.value, tone=SEVERITY_TONES[finding.severity]),
             text(finding.rule),
-            text(finding.subject),
+            ReportCell(text=finding.subject, link=_link(finding)),
             text(finding.message),
             text(finding.why),
             text(finding.remedy),
             ReportCell(text=str(finding.origin or ""), origin=finding.origin),
         ),
     )
+
+
+def _link(finding: Finding) -> str:
+    return f"matrix/{finding.subject}" if finding.subject_kind == "requirement" else ""

@@ -11,10 +11,11 @@ from specflow.model.finding import Finding, Severity
 from specflow.model.report import Align, CellTone, ReportCell, ReportColumn, ReportRow, ReportTable
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Results, Snapshot
-from specflow.model.verdict import ActivityResult, RequirementStatus
+from specflow.model.verdict import RequirementStatus
 from specflow.parameters import Dictionary
 from specflow.reports.figures import (
     COMPLIANCE_TONES,
+    DASH,
     label_tone,
     margin,
     share,
@@ -39,6 +40,7 @@ MATRIX_COLUMNS = (
     ReportColumn(key="failing", title="Failing", align=Align.RIGHT, width=9),
     ReportColumn(key="missing", title="Without evidence", align=Align.RIGHT, width=10),
     ReportColumn(key="verdict", title="Worst verdict", width=16),
+    ReportColumn(key="value", title="Governing value", align=Align.RIGHT, width=14, explains="as recorded"),
     ReportColumn(key="margin", title="Margin", align=Align.RIGHT, width=12),
     ReportColumn(key="guarded_margin", title="Guarded margin", align=Align.RIGHT, width=12),
     ReportColumn(key="smallest_margin", title="Smallest margin", align=Align.RIGHT, width=12),
@@ -106,7 +108,7 @@ def _what_is_required(
     source = requirement.source
     activities = snapshot.activities_of.get(code_key(requirement.id), ())
     return (
-        ReportCell(text=requirement.id, origin=requirement.origin),
+        ReportCell(text=requirement.id, origin=requirement.origin, link=f"points/{requirement.id}"),
         text(requirement.title),
         text(requirement.tier.value),
         text(", ".join(requirement.parents) or requirement.derived_reason),
@@ -159,12 +161,13 @@ def _what_is_shown(status: RequirementStatus, finder: OriginFinder) -> tuple[Rep
         _count(status.n_failing, CellTone.BAD),
         _count(status.n_missing, CellTone.DOUBTFUL),
         text(status.verdict.words, verdict_tone(status.verdict)),
+        finder.recorded(governing.record) if governing else text(""),
         margin(governing.margin, governing.unit) if governing else text(""),
         margin(governing.guarded_margin, governing.unit) if governing else text(""),
         margin(smallest.margin, smallest.unit) if smallest else text(""),
         text(governing.words if governing else ""),
         text(governing.item if governing else ""),
-        ReportCell(text=str(origin or "–"), origin=origin),
+        ReportCell(text=str(origin or DASH), origin=origin),
         text(status.compliance.value, COMPLIANCE_TONES.get(status.compliance, CellTone.DOUBTFUL)),
         text(f"{status.close_out.value}: {status.close_out_reason}"),
         text(status.label.value, label_tone(status.label)),
@@ -178,8 +181,3 @@ def _count(count: int, tone: CellTone) -> ReportCell:
 def _count_words(counts: Counter[Severity]) -> str:
     order = (Severity.ERROR, Severity.WARNING, Severity.INFO)
     return ", ".join(f"{counts[severity]} {severity.value}" for severity in order if counts[severity])
-
-
-def shown_activity(status: RequirementStatus) -> ActivityResult | None:
-    """Return the activity whose points a reader is shown first: the one with the fewest points proved."""
-    return min(status.activities, key=lambda activity: (activity.k, activity.activity), default=None)

@@ -5,8 +5,10 @@ from __future__ import annotations
 from specflow.model.base import code_key
 from specflow.model.evidence import EvidenceColumns, EvidenceFile, EvidenceTable, ValueColumn
 from specflow.model.origin import Origin
+from specflow.model.report import ReportCell
 from specflow.model.snapshot import Snapshot
 from specflow.model.verdict import RecordRef
+from specflow.reports.figures import reading, text
 
 
 class OriginFinder:
@@ -16,16 +18,16 @@ class OriginFinder:
         self._snapshot = snapshot
         self._columns: dict[str, EvidenceColumns] = {}
 
-    def table(self, record: RecordRef) -> EvidenceTable:
-        """Return the table of a record."""
-        found = self._snapshot.find(EvidenceTable, record.table)
+    def table(self, table: str) -> EvidenceTable:
+        """Return a table by its id."""
+        found = self._snapshot.find(EvidenceTable, table)
         if found is None:
-            raise KeyError(record.table)
+            raise KeyError(table)
         return found
 
     def column(self, record: RecordRef) -> ValueColumn:
         """Return the value column of a record."""
-        return next(column for column in self.table(record).values if column.name == record.column)
+        return next(column for column in self.table(record.table).values if column.name == record.column)
 
     def columns(self, table: str) -> EvidenceColumns:
         """Return the arrays of a table."""
@@ -45,7 +47,7 @@ class OriginFinder:
         """Return the place of a record, or None without one."""
         if record is None:
             return None
-        table = self.table(record)
+        table = self.table(record.table)
         file = self._snapshot.find(EvidenceFile, table.file)
         return Origin(
             file=file.name if file else table.file,
@@ -55,6 +57,10 @@ class OriginFinder:
             column=self.column(record).column,
         )
 
-    def item(self, record: RecordRef) -> str:
-        """Return the item as the record states it."""
-        return self.columns(record.table).items.word(record.row)
+    def recorded(self, record: RecordRef | None) -> ReportCell:
+        """Return the value as it stands in its cell, in the unit as recorded."""
+        if record is None:
+            return text("")
+        arrays = self.columns(record.table).values[record.column]
+        low, high = float(arrays.low[record.row]), float(arrays.high[record.row])
+        return reading(low, high, self.column(record).unit)

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections import Counter
 from collections.abc import Iterable, Sequence
 
+from specflow.model.base import code_key
 from specflow.model.report import Align, CellTone, ReportCell, ReportColumn, ReportRow, ReportTable
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Results, Snapshot
@@ -63,7 +64,7 @@ def in_tree_order(snapshot: Snapshot) -> tuple[list[Requirement], dict[str, int]
             return
         depths[requirement.id] = depth
         ordered.append(requirement)
-        for child in snapshot.children_of.get(requirement.id.casefold(), ()):
+        for child in snapshot.children_of.get(code_key(requirement.id), ()):
             walk(child, depth + 1)
 
     for requirement in snapshot.requirements:

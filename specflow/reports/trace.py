@@ -4,33 +4,47 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 
+import numpy as np
+
 from specflow.limits import limit_words
 from specflow.model.base import code_key
+from specflow.model.block import Block
 from specflow.model.budget import Allocation
 from specflow.model.card import TrailStep
-from specflow.model.evidence import EvidenceFile, EvidenceTable
+from specflow.model.evidence import EvidenceFile, EvidenceTable, ValueColumn
 from specflow.model.origin import Origin, column_letters
-from specflow.model.report import CellTone
+from specflow.model.report import CellTone, ReportCell, ReportColumn, ReportRow, ReportTable
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Results, Snapshot
-from specflow.model.verdict import ActivityResult, PointResults, RecordRef, RequirementStatus, Verdict
+from specflow.model.verdict import ActivityResult, PointResults, RequirementStatus, Verdict
 from specflow.parameters import Dictionary
-from specflow.reports.figures import DASH, interval, label_tone, margin, share, verdict_tone
+from specflow.reports.figures import interval, label_tone, margin, share, verdict_tone
+from specflow.reports.lacking import Lacking
 from specflow.reports.origins import OriginFinder
-from specflow.reports.points import points_of, record_at, shown_points, words_of
+from specflow.reports.points import points_of, record_at, shown_items, words_of
+from specflow.reports.serving import Served
 
 MOST_POINTS = 400  # a trail is read by people; the points table of an export has them all
 
 
 def requirement_trail(
-    requirement: Requirement, snapshot: Snapshot, results: Results, dictionary: Dictionary
+    requirement: Requirement,
+    snapshot: Snapshot,
+    results: Results,
+    dictionary: Dictionary,
+    *,
+    finder: OriginFinder | None = None,
+    most_points: int = MOST_POINTS,
 ) -> tuple[TrailStep, ...]:
-    """Return the trail, parents first (depth < 0), the requirement (0), then what is below it (> 0)."""
+    """Return the trail, parents first (depth < 0), the requirement (0), then what is below it (> 0).
+
+    Of each item at most ``most_points`` points are listed, those that decide first.
+    """
     return (
         *_upwards(requirement, snapshot, results, dictionary, -1, frozenset()),
         _requirement_step(requirement, results, dictionary, 0),
         *_allocations(requirement, snapshot, results, dictionary),
-        *_evidence(requirement, snapshot, results),
+        *_evidence(requirement, snapshot, results, finder or OriginFinder(snapshot), most_points),
     )
 
 
@@ -90,28 +104,76 @@ def _allocation_source(link: Allocation | None) -> str:
     return f" · set by hand: {link.manual_reason}"
 
 
-def _evidence(requirement: Requirement, snapshot: Snapshot, results: Results) -> Iterator[TrailStep]:
-    finder = OriginFinder(snapshot)
+def _evidence(
+    requirement: Requirement, snapshot: Snapshot, results: Results, finder: OriginFinder, most: int
+) -> Iterator[TrailStep]:
     status = results.of(requirement.id)
+    points = points_of(snapshot, requirement)
+    lacking = Lacking(requirement, status, points, snapshot, finder)
     for activity in status.activities:
         yield _activity_step(activity, requirement, snapshot)
-        found = shown_points(activity)
-        if found is None:
-            continue
-        finder.fetch(set(found.tables))
-        yield from _point_steps(requirement, activity, found, snapshot, finder)
+        for item, found, places in shown_items(requirement, activity, snapshot):
+            if found is not None:
+                finder.fetch(set(found.tables))
+            listed = deciding(found, places, most)
+            for place in listed:
+                record = record_at(found, place, finder)
+                yield TrailStep(
+                    depth=2,
+                    kind="point",
+                    id=record.table if record else "",
+                    text=f"{words_of(points, place)}{f', item {item}' if item else ''}: "
+                    f"{_point_words(found, place, requirement, status, lacking)}",
+                    tone=verdict_tone(_verdict(found, place)),
+                    origin=finder.origin(record),
+                )
+            if len(listed) < len(places):
+                yield TrailStep(
+                    depth=2, kind="point", text=f"... and {len(places) - len(listed)} more points"
+                )
     yield from _not_counted(status)
 
 
+def deciding(found: PointResults | None, places: Sequence[int], most: int) -> Sequence[int]:
+    """Return the points to list, in their order: all, or the worst by verdict and then by guarded margin."""
+    if len(places) <= most:
+        return places
+    if found is None:
+        return places[:most]
+    among = np.asarray(places)
+    margins = np.nan_to_num(found.guarded_margin[among], nan=np.inf)
+    worst = np.lexsort((margins, -found.verdict[among].astype(int)))[:most]
+    return [int(place) for place in np.sort(among[worst])]
+
+
+def _verdict(found: PointResults | None, place: int) -> Verdict:
+    return Verdict(int(found.verdict[place])) if found is not None else Verdict.NONE
+
+
+def _point_words(
+    found: PointResults | None,
+    place: int,
+    requirement: Requirement,
+    status: RequirementStatus,
+    lacking: Lacking,
+) -> str:
+    verdict = _verdict(found, place)
+    if found is None or found.table[place] < 0:
+        lacks = lacking.words(place, found)
+        return f"no evidence{f' ({lacks})' if lacks else ''}" if verdict is Verdict.NONE else verdict.words
+    value = interval(float(found.value_low[place]), float(found.value_high[place]), requirement.limit.unit)
+    plain, guarded = float(found.margin[place]), float(found.guarded_margin[place])
+    parts = [value, verdict.words, f"margin {margin(plain, status.unit).text}"]
+    if not np.isnan(guarded) and guarded != plain:
+        parts.append(f"guarded {margin(guarded, status.unit).text}")
+    if verdict <= Verdict.CONDITIONAL_PASS and not found.proved[place]:
+        parts.append(lacking.words(place, found) or "does not prove the point")
+    return " · ".join(parts)
+
+
 def _activity_step(activity: ActivityResult, requirement: Requirement, snapshot: Snapshot) -> TrailStep:
-    planned = next(
-        (
-            one
-            for one in snapshot.activities_of.get(code_key(requirement.id), ())
-            if same(one.id, activity.activity)
-        ),
-        None,
-    )
+    known = snapshot.activities_of.get(code_key(requirement.id), ())
+    planned = next((one for one in known if same(one.id, activity.activity)), None)
     how = (
         f"{planned.method.value}, {planned.stage.value}" if planned and planned.planned else "not planned yet"
     )
@@ -123,39 +185,6 @@ def _activity_step(activity: ActivityResult, requirement: Requirement, snapshot:
         text=f"{how} · {activity.state.value} · {share(activity.k, activity.n)} points{shown}",
         tone=verdict_tone(activity.verdict),
     )
-
-
-def _point_steps(
-    requirement: Requirement,
-    activity: ActivityResult,
-    found: PointResults,
-    snapshot: Snapshot,
-    finder: OriginFinder,
-) -> Iterator[TrailStep]:
-    points = points_of(snapshot, requirement)
-    unit = activity.governing.unit if activity.governing else ""
-    for place in range(min(len(found.verdict), MOST_POINTS)):
-        record = record_at(found, place, finder)
-        verdict = Verdict(int(found.verdict[place]))
-        value = DASH
-        if record is not None:
-            column = finder.column(record)
-            value = interval(float(found.value_low[place]), float(found.value_high[place]), column.unit)
-        yield TrailStep(
-            depth=2,
-            kind="point",
-            id=record.table if record else "",
-            text=f"{words_of(points, place)}: {value} · {verdict.words} · margin "
-            f"{margin(float(found.margin[place]), unit).text}",
-            tone=verdict_tone(verdict),
-            origin=finder.origin(record),
-        )
-    if len(found.verdict) > MOST_POINTS:
-        yield TrailStep(
-            depth=2,
-            kind="point",
-            text=f"... and {len(found.verdict) - MOST_POINTS} more points; the points table of an export has all",
-        )
 
 
 def _not_counted(status: RequirementStatus) -> Iterator[TrailStep]:
@@ -170,71 +199,135 @@ def _not_counted(status: RequirementStatus) -> Iterator[TrailStep]:
 
 
 def table_trail(
-    table: EvidenceTable, snapshot: Snapshot, results: Results, served: Sequence[Requirement]
+    table: EvidenceTable, snapshot: Snapshot, results: Results, served: Served
 ) -> tuple[TrailStep, ...]:
     """Return the way back: from a file and its table to the requirements that its records govern."""
-    file = snapshot.find(EvidenceFile, table.file)
-    name = file.name if file else table.file
+    governed = served.get(code_key(table.id), {})
     steps = [
-        TrailStep(
-            depth=-1,
-            kind="file",
-            id=table.file,
-            text=f"{name}, SHA-256 {file.sha256[:16] if file else ''}…",
-            origin=Origin(file=name, sha256=file.sha256 if file else "", sheet=table.sheet),
-        ),
+        _file_step(table, snapshot),
         TrailStep(
             depth=0,
             kind="table",
             id=table.id,
             text=f"{table.rows} rows for block {table.block}, accepted by {table.accepted_by or 'nobody yet'}",
         ),
+        *(_column_step(table, column) for column in table.values),
     ]
-    steps.extend(
-        TrailStep(
-            depth=1,
-            kind="column",
-            id=table.id,
-            text=f"column {column_letters(column.column)}: {column.quantity.parameter} in {column.unit} "
-            f"(unit from {column.unit_from})",
-        )
-        for column in table.values
-    )
-    for requirement in served:
-        status = results.of(requirement.id)
-        governed = sum(_points_governed(activity, table.id) for activity in status.activities)
-        steps.append(
-            TrailStep(
-                depth=1,
-                kind="requirement",
-                id=requirement.id,
-                text=f"{requirement.title}: governs {governed} of {status.n} points · {status.label.value}",
-                tone=label_tone(status.label),
-                origin=requirement.origin,
-            )
-        )
+    for code, count in governed.items():
+        requirement = snapshot.find(Requirement, code)
+        if requirement is not None:
+            steps.append(_served_step(requirement, count, results))
+    if not governed:
+        why = results.unmatched.get(table.id) or "no record of it governs a required point"
+        steps.append(TrailStep(depth=1, kind="requirement", text=why, tone=CellTone.DOUBTFUL))
     return tuple(steps)
 
 
-def requirements_served(table: EvidenceTable, snapshot: Snapshot, results: Results) -> list[Requirement]:
-    """Return the requirements that have a point governed by a record of this table."""
-    return [
-        requirement
-        for requirement in snapshot.requirements
-        if any(_points_governed(activity, table.id) for activity in results.of(requirement.id).activities)
-    ]
+def _file_step(table: EvidenceTable, snapshot: Snapshot) -> TrailStep:
+    file = snapshot.find(EvidenceFile, table.file)
+    name = file.name if file else table.file
+    sha256 = file.sha256 if file else ""
+    return TrailStep(
+        depth=-1,
+        kind="file",
+        id=table.file,
+        text=f"{name}, SHA-256 {sha256}" if sha256 else name,
+        origin=Origin(file=name, sha256=sha256, sheet=table.sheet),
+    )
 
 
-def _points_governed(activity: ActivityResult, table: str) -> int:
-    return max((_governed_by(found, table) for found in activity.items.values()), default=0)
+def _column_step(table: EvidenceTable, column: ValueColumn) -> TrailStep:
+    return TrailStep(
+        depth=1,
+        kind="column",
+        id=table.id,
+        text=f"column {column_letters(column.column)}: {column.quantity.parameter} in {column.unit} "
+        f"(unit from {column.unit_from})",
+    )
 
 
-def _governed_by(found: PointResults, table: str) -> int:
-    if table not in found.tables:
-        return 0
-    return int((found.table == found.tables.index(table)).sum())
+def _served_step(requirement: Requirement, governed: int, results: Results) -> TrailStep:
+    status = results.of(requirement.id)
+    return TrailStep(
+        depth=1,
+        kind="requirement",
+        id=requirement.id,
+        text=f"{requirement.title}: governs {governed} of {status.n} points · {status.label.value}",
+        tone=label_tone(status.label),
+        origin=requirement.origin,
+    )
 
 
-def governing_record(status: RequirementStatus) -> RecordRef | None:
-    """Return the record that governs a requirement, if there is one."""
-    return status.governing.record if status.governing else None
+def block_trail(
+    block: Block, snapshot: Snapshot, results: Results, dictionary: Dictionary, served: Served
+) -> tuple[TrailStep, ...]:
+    """Return a block with the blocks above it, its requirements, items and evidence."""
+    steps = [*_blocks_above(block, snapshot), _block_step(block, 0)]
+    steps.extend(_block_step(child, 1) for child in snapshot.blocks_below.get(code_key(block.id), ()))
+    steps.extend(
+        _requirement_step(requirement, results, dictionary, 1)
+        for requirement in snapshot.requirements_of_block.get(code_key(block.id), ())
+    )
+    steps.extend(
+        TrailStep(depth=1, kind="item", id=item.id, text=f"serial {item.serial}, {item.hardware_type.value}")
+        for item in snapshot.items
+        if same(item.block, block.id)
+    )
+    for table in snapshot.tables_of_block.get(code_key(block.id), ()):
+        governed = served.get(code_key(table.id), {})
+        serves = ", ".join(governed) if governed else "no required point"
+        step = _file_step(table, snapshot)
+        text = f"{table.rows} rows, governs points of {serves}"
+        steps.append(step.model_copy(update={"depth": 1, "kind": "table", "id": table.id, "text": text}))
+    return tuple(steps)
+
+
+def _block_step(block: Block, depth: int) -> TrailStep:
+    many = f", {block.quantity} used" if block.quantity > 1 else ""
+    return TrailStep(
+        depth=depth,
+        kind="block",
+        id=block.id,
+        text=f"{block.name} ({block.tier.value}{many})",
+        origin=block.origin,
+    )
+
+
+def _blocks_above(block: Block, snapshot: Snapshot) -> list[TrailStep]:
+    above: list[Block] = []
+    parent = snapshot.find(Block, block.parent)
+    while parent is not None and parent not in above:
+        above.insert(0, parent)
+        parent = snapshot.find(Block, parent.parent)
+    return [_block_step(one, place - len(above)) for place, one in enumerate(above)]
+
+
+TRAIL_COLUMNS = (
+    ReportColumn(key="kind", title="What", width=20),
+    ReportColumn(key="id", title="Id", width=18),
+    ReportColumn(key="text", title="Says", width=80),
+    ReportColumn(key="origin", title="Where", width=44),
+)
+
+
+def trail_table(title: str, steps: Sequence[TrailStep]) -> ReportTable:
+    """Return a trail as a table, what is above first; the depth of a row is its place below the top."""
+    top = min((step.depth for step in steps), default=0)
+    return ReportTable(
+        key="trace",
+        title=title,
+        columns=TRAIL_COLUMNS,
+        rows=tuple(
+            ReportRow(
+                id=step.id,
+                depth=step.depth - top,
+                cells=(
+                    ReportCell(text=step.kind),
+                    ReportCell(text=step.id),
+                    ReportCell(text=step.text, tone=step.tone),
+                    ReportCell(text=str(step.origin or ""), origin=step.origin),
+                ),
+            )
+            for step in steps
+        ),
+    )

@@ -1,0 +1,70 @@
+"""``specflow export``: the compliance workbook, or the same as a page, csv or JSON."""
+
+from __future__ import annotations
+
+import sys
+from pathlib import Path
+from typing import Annotated
+
+import typer
+
+from specflow.cli.console import progress, put, put_json, say
+from specflow.cli.options import AsOfOption, JsonOption, ProjectOption, judged_on, open_store
+
+OutputOption = Annotated[
+    str,
+    typer.Option(
+        "--output",
+        "-o",
+        help="The file to write, - for stdout; default: named after the project, in this folder.",
+        show_default=False,
+    ),
+]
+FormatOption = Annotated[
+    str,
+    typer.Option(
+        "--format",
+        "-f",
+        help="xlsx, html, csv or json; default: as the file's name ends, else xlsx.",
+        show_default=False,
+    ),
+]
+TableOption = Annotated[
+    list[str] | None,
+    typer.Option(
+        "--table",
+        help="Only this table: matrix, points, evidence, findings or about (may be repeated; csv holds one).",
+        show_default=False,
+    ),
+]
+OverwriteOption = Annotated[bool, typer.Option("--overwrite", help="Replace the file if it exists.")]
+
+
+def export(
+    output: OutputOption = "",
+    format: FormatOption = "",
+    table: TableOption = None,
+    overwrite: OverwriteOption = False,
+    project: ProjectOption = "",
+    as_of: AsOfOption = "",
+    as_json: JsonOption = False,
+) -> None:
+    """Write the compliance workbook, or the same as a page, csv or JSON.
+
+    Compliance matrix, required points, evidence, findings, and what it was made from. The same project gives the same
+    bytes.
+    """
+    from specflow.workflows.export import export_report, format_for, write_export
+
+    with open_store(project, read_only=True) as store, progress("export"):
+        made = export_report(store, judged_on(as_of), format_for(output, format), tables=table or ())
+    if output == "-":
+        sys.stdout.buffer.write(made.content)
+        return
+    path = Path(output or made.file_name)
+    write_export(made, path, overwrite=overwrite)
+    if as_json:
+        put_json({"file": str(path), "bytes": len(made.content), "tables": dict(made.tables)})
+        return
+    put(str(path))
+    say("; ".join(f"{title}: {rows} rows" for title, rows in made.tables))

@@ -1,0 +1,114 @@
+"""The margin bar as data: limit, guard band and spread of results on one axis."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.model.card import BarAxis, MarginBar
+from specflow.model.requirement import Requirement
+from specflow.model.verdict import PointResults, RequirementStatus
+from specflow.reports.figures import margin, with_unit
+from specflow.reports.points import shown_points
+
+Floats = NDArray[np.float64]
+
+
+def margin_bar(requirement: Requirement, status: RequirementStatus) -> MarginBar | None:
+    """Return the bar over all activities, None without evidence.
+
+    Over values where one limit holds at all points; over margins (the limit at 0) where it differs between points.
+    """
+    known = [
+        (found, found.table >= 0)
+        for activity in status.activities
+        if (found := shown_points(activity)) is not None and (found.table >= 0).any()
+    ]
+    if not known:
+        return None
+    lower = _several([found.lower[places] for found, places in known])
+    upper = _several([found.upper[places] for found, places in known])
+    guard = max(_widest_guard(found, places) for found, places in known)
+    if len(lower) > 1 or len(upper) > 1:
+        return _over_margins(status.unit, [found.margin[places] for found, places in known], guard)
+    return _over_values(
+        requirement.limit.unit,
+        status.unit,
+        float(lower[0]) if len(lower) else None,
+        float(upper[0]) if len(upper) else None,
+        guard,
+        np.concatenate([found.value_low[places] for found, places in known]),
+        np.concatenate([found.value_high[places] for found, places in known]),
+    )
+
+
+def _several(parts: Sequence[Floats]) -> Floats:
+    values = np.concatenate(parts)
+    return np.unique(values[np.isfinite(values)])
+
+
+def _widest_guard(found: PointResults, places: NDArray[np.bool_]) -> float:
+    bands = found.margin[places] - found.guarded_margin[places]
+    bands = bands[np.isfinite(bands)]
+    return max(float(bands.max()), 0.0) if len(bands) else 0.0
+
+
+def _over_margins(unit: str, parts: Sequence[Floats], guard: float) -> MarginBar | None:
+    margins = np.concatenate(parts)
+    margins = margins[np.isfinite(margins)]
+    if not len(margins):
+        return None
+    least, greatest = float(margins.min()), float(margins.max())
+    low, high = margin(least, unit).text, margin(greatest, unit).text
+    words = [f"margin {low} to {high}, the limit differs from point to point", *_guard_words(guard, unit)]
+    return MarginBar(
+        axis=BarAxis.MARGIN,
+        unit=unit,
+        lower=0.0,
+        lower_text="limit",
+        guard=guard,
+        least=least,
+        greatest=greatest,
+        least_text=low,
+        greatest_text=high,
+        words="; ".join(words),
+    )
+
+
+def _over_values(
+    unit: str,
+    tolerance: str,
+    lower: float | None,
+    upper: float | None,
+    guard: float,
+    low: Floats,
+    high: Floats,
+) -> MarginBar | None:
+    finite = np.concatenate([low[np.isfinite(low)], high[np.isfinite(high)]])
+    if not len(finite):
+        return None
+    least, greatest = float(finite.min()), float(finite.max())
+    texts = [with_unit(least, unit), with_unit(greatest, unit)]
+    spread = texts[0] if least == greatest else f"{texts[0]} to {texts[1]}"
+    bounds = (("at least", lower), ("at most", upper))
+    limits = [f"{word} {with_unit(value, unit)}" for word, value in bounds if value is not None]
+    words = [f"limit {' and '.join(limits)}" if limits else "no limit here", f"results {spread}"]
+    return MarginBar(
+        unit=unit,
+        lower=lower,
+        upper=upper,
+        guard=guard,
+        least=least,
+        greatest=greatest,
+        lower_text="" if lower is None else with_unit(lower, unit),
+        upper_text="" if upper is None else with_unit(upper, unit),
+        least_text=texts[0],
+        greatest_text=texts[1],
+        words="; ".join([*words, *_guard_words(guard, tolerance)]),
+    )
+
+
+def _guard_words(guard: float, unit: str) -> list[str]:
+    return [f"guard band {with_unit(guard, unit)}"] if guard > 1e-9 else []

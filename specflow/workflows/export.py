@@ -1,0 +1,124 @@
+"""Write the compliance report: a workbook, a page, csv or JSON. The same project gives the same bytes."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Sequence
+from dataclasses import dataclass
+from datetime import date
+from pathlib import Path
+
+from specflow.errors import FileError, SpecflowError
+from specflow.exporters import WRITERS, writer
+from specflow.model.report import Report, ReportTable
+from specflow.reports.about import about_table, cautions
+from specflow.reports.evidence import evidence_table
+from specflow.reports.findings import findings_table
+from specflow.reports.matrix import compliance_matrix
+from specflow.reports.points import POINT_COLUMNS, points_count, points_table
+from specflow.reports.status import in_tree_order
+from specflow.store import ProjectStore
+from specflow.workflows.evaluate_project import Evaluation, evaluate_project
+
+TABLES = ("matrix", "points", "evidence", "findings", "about")
+MOST_POINTS_ON_A_PAGE = 20_000  # a browser lays out no more rows than this in reasonable time
+
+
+@dataclass(frozen=True, slots=True)
+class Export:
+    """A rendered report: its bytes, and the name it has when nobody gives one."""
+
+    content: bytes
+    file_name: str
+    tables: Sequence[tuple[str, int]]
+
+
+def export_report(
+    store: ProjectStore, as_of: date, format: str = "xlsx", *, tables: Sequence[str] = ()
+) -> Export:
+    """Judge the project and render its compliance report, all tables or those named.
+
+    SpecflowError for an unknown format or table.
+    """
+    rendering = writer(format)
+    unknown = [name for name in tables if name not in TABLES]
+    if unknown:
+        raise SpecflowError(f"there is no table {unknown[0]!r}", hint=f"tables: {', '.join(TABLES)}")
+    evaluation = evaluate_project(store, as_of)
+    report = compliance_report(evaluation, tables or TABLES, for_page=format == "html")
+    name = re.sub(r"[^\w.-]+", "-", evaluation.snapshot.project.name).strip("-.") or "project"
+    return Export(
+        rendering.render(report),
+        f"{name}-compliance{rendering.extension}",
+        [(table.title, len(table.rows)) for table in report.tables],
+    )
+
+
+def compliance_report(
+    evaluation: Evaluation, tables: Sequence[str] = TABLES, *, for_page: bool = False
+) -> Report:
+    """Return the tables of the report; on a page very many points are left out, saying where they are."""
+    snapshot, results = evaluation.snapshot, evaluation.results
+    return Report(
+        title=f"{snapshot.project.name}: compliance",
+        subtitle=f"judged as of {results.as_of}, project revision {snapshot.revision}",
+        cautions=cautions(snapshot, evaluation.dictionary),
+        tables=tuple(_table(name, evaluation, for_page) for name in tables),
+    )
+
+
+def _table(name: str, evaluation: Evaluation, for_page: bool) -> ReportTable:
+    snapshot, results, dictionary = evaluation.snapshot, evaluation.results, evaluation.dictionary
+    requirements, depths = in_tree_order(snapshot)
+    match name:
+        case "matrix":
+            return compliance_matrix(snapshot, results, evaluation.findings, dictionary, requirements, depths)
+        case "points":
+            count = points_count(results, requirements)
+            if for_page and count > MOST_POINTS_ON_A_PAGE:
+                return _elsewhere(count)
+            return points_table(snapshot, results, requirements)
+        case "evidence":
+            return evidence_table(snapshot, results)
+        case "findings":
+            return findings_table(evaluation.findings)
+        case _:
+            return about_table(snapshot, results, dictionary)
+
+
+def _elsewhere(count: int) -> ReportTable:
+    intro = (
+        f"{count} required points are too many for a page. They are all in the workbook and in csv: "
+        "specflow export --format xlsx, or specflow export --format csv --table points."
+    )
+    return ReportTable(key="points", title="Required points", intro=intro, columns=POINT_COLUMNS[:1], rows=())
+
+
+def write_export(export: Export, path: Path, *, overwrite: bool = False) -> None:
+    """Write the bytes to a file, whole or not at all.
+
+    FileError when the file exists and may not be overwritten, or cannot be written.
+    """
+    if path.exists() and not overwrite:
+        raise FileError(
+            "the file exists already", where=str(path), hint="say --overwrite, or name another file with -o"
+        )
+    part = path.with_name(path.name + ".part")
+    try:
+        part.write_bytes(export.content)
+        part.replace(path)
+    except OSError as error:
+        part.unlink(missing_ok=True)
+        raise FileError(
+            f"the file cannot be written: {error.strerror or error}",
+            where=str(path),
+            hint="check the folder and the space left; a spreadsheet program may hold the file open",
+        ) from error
+
+
+def format_for(path: str, format: str) -> str:
+    """Return the format asked for, else that of the file's name, else the workbook."""
+    if format:
+        return format
+    ending = Path(path).suffix.lower().removeprefix(".")
+    return ending if ending in WRITERS else "xlsx"
