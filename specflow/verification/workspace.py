@@ -35,6 +35,7 @@ from specflow.units import Quantity, parse_unit
 from specflow.verification.comparable import Fit, Wanted, fit
 from specflow.verification.map_choice import MapChoice
 from specflow.verification.records import Held, Records, Source, gather, no_records
+from specflow.verification.residuals import Residuals
 from specflow.verification.stacking import stack
 from specflow.verification.standing import RowStanding, StandingRegister
 
@@ -193,9 +194,13 @@ class Workspace:
         columns = self.columns(source.table.id)
         codes, items = self._item_codes(source.table.id, columns.items)
         standing = self._standing(source, columns)
-        return Held(
-            source, how, columns.values[source.column.name], columns.conditions, codes, items, standing
-        )
+        arrays = self.residuals.bounded(source, columns)
+        return Held(source, how, arrays, columns.conditions, codes, items, standing)
+
+    @cached_property
+    def residuals(self) -> Residuals:
+        """What instruments show with nothing connected, by set-up."""
+        return Residuals.of(self.snapshot, self.dictionary)
 
     def _stack(self, tables: Sequence[str]) -> Columns:
         key = tuple(tables)
