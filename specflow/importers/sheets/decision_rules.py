@@ -6,10 +6,8 @@ import re
 from typing import get_args
 
 from specflow.importers.sheets.intake import Intake
+from specflow.importers.sheets.items import known_items
 from specflow.importers.sheets.row import SheetRow
-from specflow.importers.sheets.spelling import near
-from specflow.model.base import code_key
-from specflow.model.block import Item
 from specflow.model.expression import Number
 from specflow.model.limit import Limit, TestTolerance
 from specflow.model.parameter import Parameter
@@ -117,19 +115,7 @@ def _items(row: SheetRow, intake: Intake, text: str) -> tuple[str, ...]:
     names = tuple(part.strip() for part in re.split(r"[,;\n]", text) if part.strip())
     if not names:
         row.fault("proved_by", "no item is named", "write each of: SN1, SN2")
-    items = intake.all(Item)
-    known = {code_key(item.serial): item.serial for item in items} | {
-        code_key(item.id): item.id for item in items
-    }
-    for name in names:
-        if code_key(name) not in known and intake.spelling(Item, name) is None:
-            row.fault(
-                "proved_by",
-                f"there is no item or serial {name}" + near(name, known.values()),
-                "write ids or serials of items of the project, or add them to the sheet Items",
-                rule="workbook-unknown-reference",
-            )
-    return tuple(known.get(code_key(name), name) for name in names)
+    return known_items(row, "proved_by", names, intake)
 
 
 def with_test_tolerance(row: SheetRow, limit: Limit) -> Limit:

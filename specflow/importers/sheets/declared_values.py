@@ -9,6 +9,7 @@ from specflow.importers.sheets.cells import CellFault, text_number
 from specflow.importers.sheets.intake import Intake
 from specflow.importers.sheets.row import SheetRow
 from specflow.importers.sheets.sheet import MARK_COLUMN, Sheet, each_row
+from specflow.model.base import code_key
 from specflow.model.declared import DeclaredValue
 from specflow.model.sheet import SheetColumn, SheetLayout
 from specflow.units import Quantity, format_unit, parse_quantity, parse_unit
@@ -83,6 +84,7 @@ def build(row: SheetRow, intake: Intake) -> DeclaredValue | None:
         row.fault(
             "name", f"{name!r} cannot be used in a limit", "use letters, digits and underscores: P_rated"
         )
+    _check_single(row, name, intake)
     quantity = unit_cell(row, "value", "unit")
     if quantity is None:
         return None
@@ -99,6 +101,18 @@ def build(row: SheetRow, intake: Intake) -> DeclaredValue | None:
         note=row.prose("note"),
         origin=row.origin("value"),
     )
+
+
+def _check_single(row: SheetRow, name: str, intake: Intake) -> None:
+    """A name that limits refer to has one value for each of what it applies to."""
+    for other in intake.all(DeclaredValue):
+        same = other.name == name and code_key(other.applies_to) == code_key(row.prose("applies_to"))
+        if same and code_key(other.id) != code_key(row.subject):
+            row.fault(
+                "name",
+                f"{name} is declared already, by {other.id} as {other.text or other.value}",
+                f"edit {other.id}, choose another name, or say what each of the two applies to",
+            )
 
 
 def unit_cell(row: SheetRow, column: str, unit_column: str = "") -> Quantity | None:

@@ -2,9 +2,13 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 from specflow.importers.sheets.intake import Intake
 from specflow.importers.sheets.row import SheetRow
 from specflow.importers.sheets.sheet import MARK_COLUMN, Sheet, each_row
+from specflow.importers.sheets.spelling import near
+from specflow.model.base import code_key
 from specflow.model.block import Block, HardwareType, Item
 from specflow.model.sheet import SheetColumn, SheetLayout
 
@@ -93,6 +97,23 @@ def build(row: SheetRow, intake: Intake) -> Item | None:
         note=row.prose("note"),
         origin=row.origin(),
     )
+
+
+def known_items(row: SheetRow, column: str, names: Sequence[str], intake: Intake) -> tuple[str, ...]:
+    """Return items named by id or serial, as their documents write them; an unknown one is a finding."""
+    items = intake.all(Item)
+    known = {code_key(item.serial): item.serial for item in items} | {
+        code_key(item.id): item.id for item in items
+    }
+    for name in names:
+        if code_key(name) not in known and intake.spelling(Item, name) is None:
+            row.fault(
+                column,
+                f"there is no item or serial {name}" + near(name, known.values()),
+                "write ids or serials of items of the project, or add them to the sheet Items",
+                rule="workbook-unknown-reference",
+            )
+    return tuple(known.get(code_key(name), name) for name in names)
 
 
 SHEET = Sheet(LAYOUT, Item, each_row(build))

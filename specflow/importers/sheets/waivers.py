@@ -5,6 +5,7 @@ from __future__ import annotations
 from typing import get_args
 
 from specflow.importers.sheets.intake import Intake
+from specflow.importers.sheets.items import known_items
 from specflow.importers.sheets.limit_cells import limit_cell
 from specflow.importers.sheets.row import SheetRow
 from specflow.importers.sheets.sheet import MARK_COLUMN, Sheet, each_row
@@ -116,7 +117,7 @@ def build(row: SheetRow, intake: Intake) -> Waiver | None:
         kind=row.one_of("kind", _KINDS, "waiver"),
         requirement=spelled,
         requirement_revision=row.whole("requirement_revision", _revision(row, intake, requirement), least=1),
-        items=row.words("items"),
+        items=known_items(row, "items", row.words("items"), intake),
         conditions=row.text("conditions"),
         permitted="" if permitted is None else permitted.text,
         reason=row.needed("reason"),

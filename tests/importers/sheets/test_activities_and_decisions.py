@@ -30,9 +30,12 @@ BY = {"By": "A. Reviewer (invented)", "On": "2026-03-31"}
 
 @pytest.fixture
 def project(tmp_path: Path) -> Snapshot:
-    """A project with two requirements and one item."""
+    """A project with two requirements and two items."""
     draft = read_sheets(
-        tmp_path, blocks=BLOCKS, requirements=REQUIREMENTS, items=[{"ID": "PA-7", "Block": "PA"}]
+        tmp_path,
+        blocks=BLOCKS,
+        requirements=REQUIREMENTS,
+        items=[{"ID": "PA-7", "Block": "PA", "Serial": "SN-PA-7"}, {"ID": "PA-8", "Block": "PA"}],
     )
     assert not draft.findings
     return a_snapshot(*draft.documents)
@@ -127,12 +130,12 @@ def test_an_approved_waiver_has_dates_items_and_an_approver(tmp_path: Path, proj
     row = WAIVER | {
         "State": "approved",
         "Approved by": "Board",
-        "Serials": "PA-7; PA-8",
+        "Serials": "sn-pa-7; PA-8",
         "Expires on": datetime(2026, 12, 31),
     }
     waiver = only(read_sheets(tmp_path, project, waivers=[row]))
     assert (waiver.items, waiver.expires_on, waiver.approver) == (
-        ("PA-7", "PA-8"),
+        ("SN-PA-7", "PA-8"),
         date(2026, 12, 31),
         "Board",
     )
@@ -149,6 +152,7 @@ def test_an_approved_waiver_has_dates_items_and_an_approver(tmp_path: Path, proj
         ({"State": "approved"}, "nobody who approved it"),
         ({"State": "granted"}, "none of the words"),
         ({"Expires on": "end of year"}, "not a date"),
+        ({"Items": "PA-9"}, "no item or serial PA-9; nearest: PA-8, PA-7"),
         ({"Nonconformance": "NC-9"}, "no nonconformance NC-9"),
     ],
 )

@@ -81,6 +81,18 @@ def test_a_declared_value_that_cannot_be_read_is_one_finding(
     assert finding.remedy
 
 
+def test_one_name_has_one_value_for_each_variant(tmp_path: Path) -> None:
+    rows = [
+        {"ID": "D-1", "Name": "P_rated", "Value": "38 dBm", "Applies to": "maritime"},
+        {"ID": "D-2", "Name": "P_rated", "Value": "35 dBm", "Applies to": "river"},
+        {"ID": "D-3", "Name": "P_rated", "Value": "33 dBm", "Applies to": "River"},
+    ]
+    draft = read_sheets(tmp_path, declared_values=rows)
+    (finding,) = draft.findings
+    assert finding.message == "P_rated is declared already, by D-2 as 35 dBm"
+    assert len(draft.documents) == 2
+
+
 @pytest.mark.parametrize(
     ("cells", "standard"),
     [
