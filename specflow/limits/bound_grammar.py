@@ -13,7 +13,7 @@ from specflow.limits.draft import Bare, Draft
 from specflow.limits.expression_grammar import last_unit, read_sum
 from specflow.limits.expression_shape import plain_number, walk
 from specflow.limits.expression_text import expression_text
-from specflow.limits.settling import is_bare_arithmetic, settle_tolerance
+from specflow.limits.settling import is_bare_arithmetic, settle_tolerance, trailing_level_unit
 from specflow.model.expression import Expression, Name, Negative, Number
 from specflow.model.limit import (
     Alternatives,
@@ -39,6 +39,7 @@ _LED = {
     "no less than": (Side.LOWER, False),
     "not below": (Side.LOWER, False),
     "at most": (Side.UPPER, False),
+    "up to": (Side.UPPER, False),
     "not more than": (Side.UPPER, False),
     "no more than": (Side.UPPER, False),
     "not greater than": (Side.UPPER, False),
@@ -57,6 +58,10 @@ _LED = {
     "max": (Side.UPPER, False),
 }
 _FOLLOWED = {
+    "(minimum)": Side.LOWER,
+    "(maximum)": Side.UPPER,
+    "(min)": Side.LOWER,
+    "(max)": Side.UPPER,
     "minimum": Side.LOWER,
     "maximum": Side.UPPER,
     "min.": Side.LOWER,
@@ -68,7 +73,7 @@ _FOLLOWED = {
     "or less": Side.UPPER,
     "or lower": Side.UPPER,
 }
-_ASYMMETRIC = re.compile(r"\+ *(?=[\d.])[^/]{1,24}/ *[-–]")
+_ASYMMETRIC = re.compile(r"(?:\+ *(?=[\d.])[^/]{1,24}/ *[-–]|[-–] *(?=[\d.])[^/]{1,24}/ *\+)")
 _PLUS_MINUS = ("±", "+/-", "+-")
 _RATIO_TO_ONE = re.compile(r": *1(?![\w.])")
 
@@ -104,6 +109,8 @@ def _value(draft: Draft) -> tuple[Expression, str]:
     """Read a value and the unit written after the whole of it; a single number keeps its own."""
     value = read_sum(draft.reader)
     unit = draft.reader.take_unit() or ""
+    if not unit:
+        value, unit = trailing_level_unit(value)
     if not unit and not last_unit(value) and not draft.inner:
         unit = "1" if draft.reader.take_pattern(_RATIO_TO_ONE) else ""
     return value, unit
@@ -168,8 +175,10 @@ def _valued(draft: Draft) -> LimitNode | Bare:
         return _tolerance(draft, value, written, amount, amount, amount_unit or last_unit(amount), place)
     if _ASYMMETRIC.match(reader.text, reader.place):
         return _asymmetric(draft, value, written, place)
-    if reader.take("..", "–") is not None or reader.take_words("to") is not None:
+    if reader.take("...", "..", "…", "–") is not None or reader.take_words("to") is not None:
         return _range(draft, value, written, place)
+    if draft.better is not None:
+        reader.take_words("or better")
     side = reader.take_words(*_FOLLOWED)
     bare = Bare(value, written, place)
     return bare if side is None else _bound(draft, _FOLLOWED[side], False, bare)
@@ -263,21 +272,26 @@ def _two_sided_zero(draft: Draft, amount: Expression, written: str, place: int) 
 
 
 def _asymmetric(draft: Draft, nominal: Expression, written: str, place: int) -> LimitNode:
+    """Read ``+2/-3`` or ``-3/+2`` after a nominal; the unit may stand after each or after both."""
     reader = draft.reader
-    reader.take("+")
-    plus_text = reader.take_number()
-    plus_unit = reader.take_unit() or ""
-    reader.expect("/", "the upper tolerance")
-    if reader.take("-", "–") is None or plus_text is None:
-        reader.fail("expected '-' and the lower tolerance", hint="26 +2/-3 dBm")
-    minus_text = reader.take_number()
-    if minus_text is None:
-        reader.fail("the lower tolerance has no number", hint="26 +2/-3 dBm")
-    minus_unit = reader.take_unit() or plus_unit
-    if plus_unit and minus_unit != plus_unit:
+    first_sign = reader.take("+", "-", "–")
+    first, first_unit = _amount(draft)
+    reader.expect("/", "the first tolerance")
+    second_sign = reader.take("+", "-", "–")
+    second, second_unit = _amount(draft)
+    if (first_sign == "+") is (second_sign == "+"):
+        reader.fail("one tolerance is '+', the other '-'", hint="26 +2/-3 dBm")
+    if first_unit and second_unit and second_unit != first_unit:
         reader.fail("the two tolerances have different units", hint="write both in one unit")
-    plus, minus = Number(text=plus_text), Number(text=minus_text)
-    return _tolerance(draft, nominal, written, plus, minus, minus_unit, place)
+    plus, minus = (first, second) if first_sign == "+" else (second, first)
+    return _tolerance(draft, nominal, written, plus, minus, second_unit or first_unit, place)
+
+
+def _amount(draft: Draft) -> tuple[Number, str]:
+    text = draft.reader.take_number()
+    if text is None:
+        draft.reader.fail("the tolerance has no number", hint="26 +2/-3 dBm")
+    return Number(text=text), draft.reader.take_unit() or ""
 
 
 def _tolerance(

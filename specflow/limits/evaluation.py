@@ -17,8 +17,9 @@ from specflow.limits.expression_shape import plain_number
 from specflow.limits.expression_value import number_in, truth
 from specflow.limits.inputs import Flags, Inputs
 from specflow.limits.mask import mask_bounds
+from specflow.limits.settling import refuse_level_sums
 from specflow.limits.tree import tree_units
-from specflow.model.expression import Number
+from specflow.model.expression import Call, Choice, Expression, Name, Number, Operation
 from specflow.model.limit import (
     Allowed,
     Alternatives,
@@ -108,6 +109,8 @@ def evaluate_node(node: LimitNode, inputs: Inputs) -> Bounds:
     """Return the bounds of one node of the tree."""
     match node:
         case Bound(side=side, value=value, unit=unit, strict=strict):
+            if isinstance(value, Operation | Call | Choice):
+                refuse_level_sums(value, unit, lambda leaf: _unit_found(leaf, inputs))
             number, flag = number_in(value, unit, inputs), ALL_FLAG if strict else NO_FLAG
             if side is Side.LOWER:
                 return Bounds(number, None, unit, lower_strict=flag)
@@ -134,6 +137,13 @@ def evaluate_node(node: LimitNode, inputs: Inputs) -> Bounds:
             return _unknown(unit, f"the limit is {label}")
         case NoLimit():
             return Bounds(None, None, "", applies=NO_FLAG, outside=ALL_FLAG)
+
+
+def _unit_found(leaf: Expression, inputs: Inputs) -> str | None:
+    """Return the unit a number or name turns out to have, None when that is open."""
+    if isinstance(leaf, Name):
+        return inputs.numbers(leaf.name)[1] or None if inputs.supplied(leaf.name) else leaf.unit or None
+    return leaf.unit or None if isinstance(leaf, Number) else None
 
 
 def _hertz(bandwidth: Number | None) -> float | None:

@@ -81,8 +81,17 @@ def parse_limit(
     _read_tentative(draft)
     tree = read_limit(draft)
     if not reader.done():
-        reader.fail(f"nothing can be made of {reader.rest!r}")
+        reader.fail(f"nothing can be made of {reader.rest!r}", hint=_left_over(reader))
     return _finished(text, draft, tree)
+
+
+def _left_over(reader: Reader) -> str:
+    """Say what to do with what engineers often write behind a limit."""
+    if reader.sees_words("typ", "typical", "nominal", "nom"):
+        return "a typical value is no limit; put it in the note"
+    if reader.sees("@", "(") or reader.sees_words("at", "over", "for", "from"):
+        return "conditions belong in the conditions set, a measurement bandwidth after 'in'"
+    return ""
 
 
 def _read_tentative(draft: Draft) -> None:
@@ -114,15 +123,27 @@ def read_limit(draft: Draft) -> LimitNode:
     reader = draft.reader
     with reader.deeper():
         clauses = [read_clause(draft)]
-        joint = reader.take_words("or", "and")
+        joint = _take_joint(draft)
         while joint is not None:
             clauses.append(read_clause(draft))
-            following = reader.take_words("or", "and")
+            following = _take_joint(draft)
             if following not in (None, joint):
                 reader.fail("'or' and 'and' are mixed", hint="group with braces: {A or B} and C")
             if following is None:
                 break
         return _joined(draft, clauses, joint)
+
+
+_NEXT_BOUND = re.compile(r"[,;] *(?:[<>≤≥⩽⩾]|(?:max|min)(?:imum)?\b(?! *\())", re.IGNORECASE)
+
+
+def _take_joint(draft: Draft) -> str | None:
+    """Take 'or' or 'and'; a comma (outside brackets a semicolon too) before another bound means 'and'."""
+    reader = draft.reader
+    if _NEXT_BOUND.match(reader.text, reader.place) and not (draft.inner and reader.sees(";")):
+        reader.take(",", ";")
+        return "and"
+    return reader.take_words("or", "and")
 
 
 def _joined(draft: Draft, clauses: list[LimitNode | Bare], joint: str | None) -> LimitNode:

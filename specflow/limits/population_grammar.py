@@ -35,6 +35,12 @@ def _percentile_or_bound(draft: Draft) -> Statistic:
         if second is None or not (0 < float(second) < 100 and 0 < float(first) < 100):
             reader.fail("expected the confidence after the '/'", hint="at 95/95 over item")
         return ToleranceBound(coverage=Number(text=first), confidence=Number(text=second))
+    if not reader.sees("%"):
+        reader.fail(
+            "'at' is followed by a percentile",
+            hint=f"{_HINT}; conditions such as a frequency belong in the conditions set",
+            place=place,
+        )
     reader.take("%")
     reader.take_words("of the", "of")
     sense = reader.take_words("CDF", "CCDF")

@@ -6,7 +6,7 @@ products and logarithms numbers are plain.
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Callable, Iterator, Sequence
 
 from specflow.errors import ExpressionError
 from specflow.limits.conversion import (
@@ -22,7 +22,7 @@ from specflow.model.expression import Call, Choice, Expression, Name, Negative, 
 from specflow.units import Kind
 
 _NO_UNIT = "the limit has no unit"
-_NO_UNIT_HINT = "write it after the number, as in '45 dBm'; 1 for a plain number"
+_NO_UNIT_HINT = "write it after the number, as in '45 dBm'; 'plain' for a number without unit"
 
 
 def spine(node: Expression) -> Iterator[Expression]:
@@ -62,7 +62,77 @@ def settle(values: Sequence[Expression], written: str, hint: str = "") -> str:
         for part in spine(value):
             if isinstance(part, Number) and part.unit:
                 _check(part, unit)
+        refuse_level_sums(value, unit, _written_unit)
     return unit
+
+
+def _written_unit(node: Expression) -> str | None:
+    """Return the unit a leaf states in the text, None when it states none."""
+    return (node.unit or None) if isinstance(node, Number | Name) else None
+
+
+def refuse_level_sums(value: Expression, unit: str, unit_of_leaf: Callable[[Expression], str | None]) -> None:
+    """Refuse sums of two levels: 45 dBm + 3 dBm is 48 dBm only if the second is meant as dB.
+
+    A level minus a level is a ratio, and a ratio is no limit in dBm.
+    """
+    if not is_level(unit):
+        return
+    levels, open_ends = _levels(value, unit_of_leaf)
+    if levels > 1:
+        raise ExpressionError(
+            "two levels do not add",
+            hint="write a difference in dB; a power sum is asked for as powersum(a, b)",
+        )
+    if levels < 1 and not open_ends:
+        raise ExpressionError(
+            f"a level minus a level is a ratio, not {unit}", hint="write a difference in dB"
+        )
+
+
+def trailing_level_unit(value: Expression) -> tuple[Expression, str]:
+    """Take a level's unit off the end of a sum whose other numbers have none: P_rated - 35 dBm is all in dBm."""
+    if not isinstance(value, Operation) or value.sign not in "+-" or not isinstance(value.right, Number):
+        return value, ""
+    unit = value.right.unit
+    others = [part for part in spine(value.left) if isinstance(part, Number) and part.unit]
+    if not is_level(unit) or others:
+        return value, ""
+    return value.model_copy(update={"right": Number(text=value.right.text)}), unit
+
+
+def is_level(unit: str) -> bool:
+    """Tell whether values of the unit are logarithmic levels, whose differences are in dB."""
+    if unit in PLAIN or unit_of(unit).kind is Kind.RATIO:
+        return False
+    return unit_of(unit).is_log and not same_unit_spelling(difference_unit(unit), unit)
+
+
+def _levels(node: Expression, unit_of_leaf: Callable[[Expression], str | None]) -> tuple[int, bool]:
+    """Return how many levels a sum has more than it takes off, and whether a part may be a level or a ratio."""
+    match node:
+        case Negative(operand=Number() as number):
+            return _levels(number, unit_of_leaf)  # the sign of a level, not a level taken off
+        case Negative(operand=operand):
+            levels, open_ends = _levels(operand, unit_of_leaf)
+            return -levels, open_ends
+        case Operation(sign="+" | "-" as sign, left=left, right=right):
+            one, other = _levels(left, unit_of_leaf), _levels(right, unit_of_leaf)
+            return one[0] + (other[0] if sign == "+" else -other[0]), one[1] or other[1]
+        case Call(function="min" | "max" | "powersum" | "abs", arguments=arguments):
+            found = [_levels(part, unit_of_leaf) for part in arguments]
+            return max(levels for levels, _ in found), any(open_ends for _, open_ends in found)
+        case Choice(then=then, otherwise=otherwise):
+            one, other = _levels(then, unit_of_leaf), _levels(otherwise, unit_of_leaf)
+            return max(one[0], other[0]), one[1] or other[1]
+    unit = unit_of_leaf(node)
+    if unit is None:
+        return 0, True
+    return (1, False) if is_level(unit) or _is_linear_level(unit) else (0, False)
+
+
+def _is_linear_level(unit: str) -> bool:
+    return unit not in PLAIN and not unit_of(unit).is_log and unit_of(unit).kind is Kind.LEVEL
 
 
 def _from_parts(values: Sequence[Expression], hint: str) -> str:

@@ -275,6 +275,15 @@ def test_plain_number_beside_a_quantity_is_refused_not_guessed() -> None:
     assert bounds(">= 3 dB if frequency[GHz] > 28", context(frequency__MHz=[29000.0])).applies.all()
 
 
+def test_sum_of_two_levels_is_refused_when_the_units_are_known() -> None:
+    levels = {"P": "20 dBm", "Q": "0 dBW", "G": "3 dB"}
+    assert "two levels do not add" in bounds("P + Q dBm max", context(levels)).why
+    assert "two levels do not add" in bounds("max(P + Q, -3) dBm max", context(levels)).why
+    assert bounds("P + G dBm max", context(levels)).upper == pytest.approx([23.0])
+    assert bounds("Q - P - 30 dBm max", context(levels)).upper == pytest.approx([-20.0])
+    assert bounds("powersum(P, P) dBm max", context(levels)).upper == pytest.approx([23.0103])
+
+
 _DECLARED = {"a": 3.5, "b": -12.25, "c": 40.0}
 _leaf = st.one_of(
     st.integers(-60, 60).map(lambda value: (str(value) if value >= 0 else f"({value})", float(value))),
@@ -293,7 +302,7 @@ def _grown(inner: st.SearchStrategy[tuple[str, float]]) -> st.SearchStrategy[tup
         inner.map(lambda one: (f"abs({one[0]})", abs(one[1]))),
         st.tuples(inner, inner, inner, inner).map(
             lambda four: (
-                f"({four[0][0]} if {four[1][0]} dBm <= ({four[2][0]}) else {four[3][0]})"
+                f"({four[0][0]} if {four[1][0]} dB <= ({four[2][0]}) else {four[3][0]})"
                 if four[1][0].isdigit() and four[2][0] in _DECLARED
                 else four[0][0],
                 (four[0][1] if four[1][1] <= four[2][1] else four[3][1])
@@ -308,8 +317,10 @@ def _grown(inner: st.SearchStrategy[tuple[str, float]]) -> st.SearchStrategy[tup
 @given(st.recursive(_leaf, _grown, max_leaves=12))
 def test_formulas_agree_with_plain_python(pair: tuple[str, float]) -> None:
     text, expected = pair
-    declared = {name: f"{value} dBm" for name, value in _DECLARED.items()}
-    assert bounds(f"(a + ({text}) - a) dBm max", context(declared)).upper == pytest.approx([expected])
+    declared = {name: f"{value} dB" for name, value in _DECLARED.items()}
+    assert bounds(f"max(-999, {text}) dB max", context(declared)).upper == pytest.approx(
+        [max(-999.0, expected)]
+    )
 
 
 @settings(max_examples=200, deadline=None)

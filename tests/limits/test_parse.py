@@ -80,6 +80,13 @@ SPELLINGS = [
     ("-5 dBm max or -12 dBm max, whichever is the higher", "looser(<= -5 dBm; <= -12 dBm)"),
     ("5 dB min or 12 dB min, whichever is lower", "looser(>= 5 dB; >= 12 dB)"),
     (">= 3 V and <= 5 V", "stricter(>= 3 V; <= 5 V)"),
+    (">= 3 V, <= 5 V", "stricter(>= 3 V; <= 5 V)"),
+    ("min 3 V; max 5 V", "stricter(>= 3 V; <= 5 V)"),
+    ("45 dBm (min)", ">= 45 dBm"),
+    ("up to 50 dBm", "<= 50 dBm"),
+    ("45 … 50 dBm", "45 dBm..50 dBm"),
+    ("26 -3/+2 dBm", "26 dBm +2 dB/-3 dB"),
+    ("<= P_EIRP[dBm] - P_TRP[dBm] - 30 dBm", "<= (P_EIRP[dBm] - P_TRP[dBm] - 30) dBm"),
 ]
 
 
@@ -181,6 +188,11 @@ REFUSED = [
     ("0.05 ppm + 12 Hz max", 1, "without the carrier frequency"),
     ("<= 3 dB + 2 MHz", 4, "do not add"),
     ("P_rated ± 3.4 dB", 1, "no unit"),
+    ("45 dBm + 3 dBm max", 1, "two levels do not add"),
+    ("<= P[dBm] + Q[dBm] dBm", 4, "two levels do not add"),
+    ("45 dBm - 50 dBm max", 1, "is a ratio"),
+    ("-95 dBc/Hz max at 100 kHz", 19, "followed by a percentile"),
+    ("3.2 dB max @ 25 °C", 12, "nothing can be made of"),
     ("<= 1,234 V", 5, "may be 1.234 or 1234"),
     ("<= max(3,2) dB", 9, "may be two values or 3.2"),
     ("= 5 dB", 1, "cannot be proved"),
