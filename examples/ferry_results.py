@@ -39,12 +39,12 @@ _TILE_HEADERS = (
     "Frequency (GHz)",
     "Baseplate temperature (°C)",
     "Gain (dB)",
-    "U gain (dB), k=2",
+    "Gain uncertainty (dB), k=2",
     "OP1dB @ chip output (dBm)",
-    "U OP1dB (dB), k=2",
+    "OP1dB uncertainty (dB), k=2",
     "Noise figure (dBm)",  # trap: a noise figure is a ratio in dB
     "Phase error (deg)",
-    "U phase error (deg), k=2",
+    "Phase error uncertainty (deg), k=2",
     "Date",
 )
 
@@ -53,7 +53,7 @@ def _tile_records() -> Iterator[Record]:
     for frequency in TRANSMIT:
         for plate in PLATE:
             gain = 23.2 - 0.9 * (frequency - 27.5) - 0.012 * (plate + 7) + ripple(frequency, plate)
-            compression = 13.9 - 0.004 * (plate - 41) - 0.1 * (frequency - 28.75) + ripple(plate, frequency)
+            compression = 14.4 - 0.004 * (plate - 41) - 0.1 * (frequency - 28.75) + ripple(plate, frequency)
             if (frequency, plate) == (30.0, 73.0):
                 gain = 20.2  # trap: 0.2 dB above its limit, with U = 0.5 dB
             yield dict(
@@ -82,9 +82,9 @@ _LNA_HEADERS = (
     "Frequency (GHz)",
     "Baseplate temperature (°C)",
     "Noise figure (dB)",
-    "U noise figure (dB), k=2",
+    "Noise figure uncertainty (dB), k=2",
     "Gain (dB)",
-    "U gain (dB), k=2",
+    "Gain uncertainty (dB), k=2",
     "Date",
 )
 
@@ -147,7 +147,7 @@ def converter_bench() -> list[Sheet]:
 
 def _report(block: str, serial: str, title: str) -> list[list[Any]]:
     return [
-        [f"{title}: bench report (invented)"],
+        [f"{title}, bench report (invented)"],
         ["Block under test", block],
         ["DUT", f"SN {serial}"],
         ["Test set-up", "Converter bench 2"],
@@ -166,8 +166,6 @@ def _upconverter_rows() -> Iterator[list[Any]]:
             number += 1
             wave = ripple(frequency, plate)
             rejection = 45.5 + 4 * wave + 0.02 * (plate - 41)
-            if (frequency, plate) == (27.5, -7.0):
-                rejection = 38.9  # trap: fails by 1.1 dB, and a waiver permits 38 dB there
             evm = 0.031 + 0.00002 * (plate - 41) + 0.01 * wave  # shown as 3.1 %
             yield [
                 number,
@@ -198,13 +196,16 @@ def _downconverter_rows() -> Iterator[list[Any]]:
             rejection: float | str = round(51.0 + 10 * wave, 1)
             if (frequency, plate) == (20.2, 73.0):
                 rejection = "< 46"  # trap: at most 46 dB, which does not show 45 dB
+            noise = 7.4 + 0.012 * (plate - 41) + wave
+            if (frequency, plate) == (18.95, 73.0):
+                noise = 8.6  # trap: fails by 0.4 dB, and a waiver permits 8.8 dB when hot
             yield [
                 number,
                 round(1000 * (frequency - 15.2), 1),
                 plate,
                 round(20.3 - 0.012 * (plate - 41) + wave, 2),
                 rejection,
-                round(7.4 + 0.012 * (plate - 41) + wave, 2),
+                round(noise, 2),
             ]
 
 
@@ -268,7 +269,7 @@ def _range_b() -> Iterator[Record]:
 def _array_record(serial: str, frequency: float, ambient: float, theta: float, phi: float) -> Record:
     scan = 13 * math.log10(math.cos(math.radians(theta)))
     wave = ripple(frequency, ambient, theta + phi)
-    eirp = 61.7 - 0.2 * (frequency - 28.75) - 0.01 * (ambient - 23) + scan + wave
+    eirp = 61.7 - 0.2 * (frequency - 28.75) - 0.006 * (ambient - 23) + scan + wave
     if (serial, frequency, ambient, theta, phi) == ("HF-0007", 30.0, 55.0, 60.0, 0.0):
         eirp = 54.9  # trap: the failing corner; its limit is 61 - 5 = 56 dBm
     limit = {0.0: 60.5, 30.0: 59.5, 60.0: 56.0}[theta]
@@ -296,7 +297,7 @@ def array_simulation() -> list[Sheet]:
 
 def _simulation(title: str) -> list[list[Any]]:
     return [
-        [f"{title}: array simulation (invented)"],
+        [f"{title}, array simulation (invented)"],
         ["Block under test", "UT"],
         ["Verification method", "analysis"],
         ["Simulation model", "array pattern model"],
@@ -341,4 +342,4 @@ def _figure_of_merit() -> Iterator[list[Any]]:
         for ambient in AMBIENT:
             gain = 28.0 + 20 * math.log10(frequency / 18.95)
             noise = 10 * math.log10(250 + 0.7 * (ambient - 23))
-            yield [frequency, ambient, round(gain - noise + 0.5, 2)]
+            yield [frequency, ambient, round(gain - noise + 1.1, 2)]

@@ -8,6 +8,7 @@ from __future__ import annotations
 import sys
 from pathlib import Path
 
+import gateway
 from ferry_results import array_simulation, array_two_laboratories, converter_bench, tile_and_amplifier
 from ferry_specification import specification_sheets
 from workbooks import write_book
@@ -24,6 +25,12 @@ def make(folder: Path = HERE) -> None:
     write_book(results / "array_two_laboratories.xlsx", "Array at two ranges", array_two_laboratories())
     write_book(results / "converter_bench.xlsx", "Converter bench", converter_bench())
     write_book(results / "tile_and_amplifier.xlsx", "Tile and amplifier", tile_and_amplifier())
+    write_book(
+        folder / "gateway" / "gateway-requirements.xlsx",
+        "Metering gateway radio",
+        gateway.specification_sheets(),
+    )
+    gateway.write_results(folder / "gateway" / "gateway_bench.csv")
 
 
 if __name__ == "__main__":
