@@ -10,11 +10,12 @@ from specflow.errors import FileError
 from specflow.importers.readers import Grid, GridFile, is_blank, open_grids
 from specflow.importers.sheets import SHEETS, Sheet
 from specflow.importers.sheets.cycles import refuse_cycles
+from specflow.importers.sheets.header import find_header
 from specflow.importers.sheets.intake import Intake
 from specflow.importers.sheets.leftovers import leave_out_orphans
 from specflow.importers.sheets.plans import complete_plans
 from specflow.importers.sheets.row import SheetRow
-from specflow.importers.sheets.table import find_header, missing_header, read_table
+from specflow.importers.sheets.table import missing_header, read_table
 from specflow.model.draft import Draft
 from specflow.model.finding import Finding, Severity
 from specflow.model.nouns import NOUNS

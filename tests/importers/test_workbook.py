@@ -26,7 +26,7 @@ REQUIREMENT = {"ID": "R-1", "Block": "UT", "Parameter": "eirp", "Limit": ">= 45 
 
 def found(draft: Draft, kind: type[Any]) -> dict[str, Any]:
     """The documents of one class, by id."""
-    return {document.id: document for document in draft.documents if isinstance(document, kind)}  # type: ignore[attr-defined]
+    return {document.id: document for document in draft.documents if isinstance(document, kind)}
 
 
 def errors(draft: Draft) -> list[str]:
@@ -102,7 +102,10 @@ def test_references_reach_into_the_project_and_take_its_spelling(tmp_path: Path)
 
 
 def test_loading_again_gives_equal_documents(tmp_path: Path) -> None:
-    sheets = {"blocks": BLOCKS, "requirements": [REQUIREMENT | {"Method": "test", "Owner": "RF"}]}
+    sheets: dict[str, Any] = {
+        "blocks": BLOCKS,
+        "requirements": [REQUIREMENT | {"Method": "test", "Owner": "RF"}],
+    }
     first = read_sheets(tmp_path, **sheets)
     second = read_sheets(tmp_path, a_snapshot(*first.documents), **sheets)
     assert [one.model_dump(exclude={"origin"}) for one in second.documents] == [

@@ -66,7 +66,7 @@ def test_forty_rows_with_twelve_mistakes_give_twelve_findings(tmp_path: Path) ->
 
     draft = read_sheets(tmp_path, blocks=BLOCKS, requirements=rows)
 
-    findings = {one.origin.row: one for one in draft.findings if one.origin}
+    findings = {one.origin.row or 0: one for one in draft.findings if one.origin}
     assert sorted(findings) == sorted(mistakes)
     assert len(draft.findings) == 12
     for number, (column, _, words) in mistakes.items():
@@ -141,9 +141,20 @@ def test_a_missing_header_is_one_finding_that_names_what_is_looked_for(tmp_path:
 
 
 def test_one_header_twice_is_refused(tmp_path: Path) -> None:
-    draft = one_row(tmp_path, **{"Limit value": "<= 3 dB"})
-    (finding,) = rejected(draft)
+    rows = [
+        {"ID": "R-1", "Block": "UT", "Parameter": "eirp", "Limits": ">= 45 dBm", "Limit value": "<= 3 dB"}
+    ]
+    (finding,) = rejected(read_sheets(tmp_path, blocks=BLOCKS, requirements=rows))
     assert "says the same as the one in D1" in finding.message
+
+
+def test_a_running_number_beside_the_id_is_reported_and_left_out(tmp_path: Path) -> None:
+    draft = one_row(tmp_path, **{"No.": 1})
+    assert [(one.rule, one.severity) for one in draft.findings] == [
+        ("workbook-doubled-column", Severity.WARNING)
+    ]
+    assert "says the same as the one in A1, which was read" in draft.findings[0].message
+    assert [one.id for one in draft.documents if isinstance(one, Requirement)] == ["R-1"]
 
 
 def test_merged_cells_are_refused_with_their_address(tmp_path: Path) -> None:

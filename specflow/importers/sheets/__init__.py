@@ -1,9 +1,14 @@
 """The sheets of the project workbook: one module a noun, each with its layout and its way from rows to documents.
 
-What may live here: ``sheet.py`` (what a sheet kind is), ``table.py`` (the header row and the rows below it), ``row.py``
-and ``cells.py`` (a cell, typed or refused), ``intake.py`` (what was read so far, references, duplicates),
-``spelling.py`` (the nearest known words), ``cycles.py`` and ``leftovers.py`` (checks across rows), ``plans.py`` (the
-activities of a requirement), and one module a noun. A new sheet is one module and one line in ``SHEETS``.
+What may live here, in the order of a run:
+
+- ``header`` and ``table``: which row and columns count; ``row`` and ``cells``: a cell, typed or refused
+- ``intake``: what was read so far, references, duplicates; ``spelling``: the nearest known words
+- one module a noun; ``limit_cells``, ``decision_rules``, ``requirement_columns``: parts of the requirement sheet
+- ``cycles``, ``leftovers``, ``plans``: what is checked and completed once all sheets are read
+- ``sheet``: what a sheet kind is; ``findings``: what may be reported
+
+A new sheet is one module and one line in ``SHEETS``.
 """
 
 from specflow.importers.sheets import (

@@ -1,75 +1,23 @@
-"""The table of a sheet: where the header row is, which column is which, and the rows below it."""
+"""The table of a sheet: the rows below the header row, and what is wrong with the sheet as a whole."""
 
 from __future__ import annotations
 
-import re
 from collections.abc import Sequence
-from dataclasses import dataclass, field
 
 from specflow.importers.readers.grid import CellRange, Grid, address, is_blank
-from specflow.importers.sheets.cells import clean
+from specflow.importers.sheets.header import HEADER_ROWS, Header, read_header
 from specflow.importers.sheets.row import SheetRow
 from specflow.importers.sheets.spelling import near
 from specflow.model.finding import Finding, Severity
 from specflow.model.origin import Origin
 from specflow.model.sheet import EXAMPLE, SheetColumn, SheetLayout, header_key
 
-_HEADER_ROWS = 50
-_BRACKET = re.compile(r"^(?P<name>.*?)\s*[\[(](?P<inside>[^\[\]()]*)[\])]\s*$")
 MARK = "mark"
-
-
-@dataclass(frozen=True)
-class Header:
-    """The header row: its number, column numbers by column key, units found in headers, and the headers not known."""
-
-    row: int
-    columns: dict[str, int]
-    units: dict[str, str] = field(default_factory=dict)
-    unknown: tuple[tuple[int, str], ...] = ()
-    doubled: tuple[tuple[int, str, int], ...] = ()
-
-
-def find_header(grid: Grid, layout: SheetLayout) -> Header | None:
-    """Return the first row that holds every required header, None when there is none in the first rows."""
-    for row in range(grid.first_row, min(grid.last_row, grid.first_row + _HEADER_ROWS) + 1):
-        header = read_header(grid, layout, row)
-        if not layout.lacking(header.columns):
-            return header
-    return None
-
-
-def read_header(grid: Grid, layout: SheetLayout, row: int) -> Header:
-    """Match the cells of one row with the columns of the layout.
-
-    Titles go before aliases, so that "ID" beside "Number" is the id; a header that is left over may still be what a
-    column is ``also`` called ("Requirement" beside "ID" is the statement).
-    """
-    left = {
-        place: text
-        for place, value in enumerate(grid.row(row), start=1)
-        if isinstance(value, str) and (text := clean(value))
-    }
-    columns: dict[str, int] = {}
-    units: dict[str, str] = {}
-    for known in _name_tables(layout):
-        for place, text in list(left.items()):
-            key, unit = _match(text, known)
-            if key is not None and key not in columns:
-                del left[place]
-                columns[key] = place
-                if unit:
-                    units[key] = unit
-    every = {name: key for known in _name_tables(layout) for name, key in known.items()}
-    known_of = {place: key for place, text in left.items() if (key := _match(text, every)[0])}
-    doubled = tuple((place, left[place], columns[key]) for place, key in known_of.items())
-    unknown = tuple((place, text) for place, text in left.items() if place not in known_of)
-    return Header(row, columns, units, unknown, doubled)
 
 
 def missing_header(grid: Grid, layout: SheetLayout, sha256: str) -> Finding:
     """Say which required headers the sheet lacks, judged by the row that comes nearest."""
-    rows = range(grid.first_row, min(grid.last_row, grid.first_row + _HEADER_ROWS) + 1)
+    rows = range(grid.first_row, min(grid.last_row, grid.first_row + HEADER_ROWS) + 1)
     nearest = max(
         (read_header(grid, layout, row) for row in rows), key=lambda one: len(one.columns), default=None
     )
@@ -112,31 +60,6 @@ def read_table(
     _spoil_headings(rows)
     _spoil_merged(rows, grid, header)
     return rows
-
-
-def _name_tables(layout: SheetLayout) -> tuple[dict[str, str], ...]:
-    """Header key → column key: of titles, of aliases, and of what columns are also called."""
-    return (
-        {header_key(column.title): column.key for column in layout.columns},
-        {
-            header_key(name): column.key
-            for column in layout.columns
-            for name in column.aliases
-            if header_key(name)
-        },
-        {header_key(name): column.key for column in layout.columns for name in column.also},
-    )
-
-
-def _match(text: str, known: dict[str, str]) -> tuple[str | None, str]:
-    """The column of a header, with the unit in its brackets; a star that marks a required column does not count."""
-    key = known.get(header_key(text))
-    if key is not None:
-        return key, ""
-    parts = _BRACKET.match(text.rstrip("* "))
-    if parts is None:
-        return None, ""
-    return known.get(header_key(parts["name"])), parts["inside"].strip()
 
 
 def _names(column: SheetColumn) -> str:
@@ -186,16 +109,19 @@ def _report_headers(
                     origin=_origin(grid, sha256, header.row, place),
                 )
             )
-    for place, text, first in header.doubled:
+    for double in header.doubled:
         findings.append(
             Finding(
                 rule="workbook-doubled-column",
-                severity=Severity.ERROR,
+                severity=Severity.WARNING if double.certain else Severity.ERROR,
                 subject=layout.title,
                 subject_kind=layout.noun,
-                message=f"the header {text!r} says the same as the one in {address(header.row, first)}",
+                message=(
+                    f"the header {double.text!r} says the same as the one in {address(header.row, double.first)}"
+                    + (", which was read" if double.certain else "")
+                ),
                 remedy="delete or rename one of the two columns",
-                origin=_origin(grid, sha256, header.row, place),
+                origin=_origin(grid, sha256, header.row, double.place),
             )
         )
 
