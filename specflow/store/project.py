@@ -160,6 +160,10 @@ class ProjectStore:
         with translated(self.name), self._place.reading() as run:
             return read_revision(run)
 
+    def now(self) -> str:
+        """Return the time of the project's clock, UTC, as it is stored."""
+        return _iso(self._clock)
+
     def load(self) -> Snapshot:
         """Return all documents as stored now; the arrays of evidence are read when they are asked for."""
         return load_snapshot(self._place)

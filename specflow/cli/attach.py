@@ -1,0 +1,201 @@
+"""specflow attach: take measurement files into the project."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING, Annotated, Any
+
+import typer
+
+from specflow.cli.console import ask, person, progress, put, put_json, say, show_error
+from specflow.cli.options import (
+    ByOption,
+    DryRunOption,
+    JsonOption,
+    ProjectOption,
+    TakeRestOption,
+    YesOption,
+    open_store,
+)
+from specflow.errors import ExitCode, SpecflowError
+
+if TYPE_CHECKING:
+    from specflow.store import ProjectStore
+    from specflow.workflows.attach import AttachOptions, AttachPreview, Decision
+
+Files = Annotated[list[Path], typer.Argument(help="Measurement files: .xlsx, .xlsm, .csv, .tsv, .txt, .dat.")]
+State = Annotated[
+    list[str],
+    typer.Option(
+        "--state",
+        metavar="NAME=VALUE",
+        help="Say something that holds for all rows: block, item, requirement, method, stage, set_up, performer, date, "
+        "procedure, model, temperature (ambient, baseplate ...), a condition (temperature_ambient='23 °C'), or what a "
+        "column is ('column C=gain in dB'). Repeatable.",
+    ),
+]
+Sheets = Annotated[list[str], typer.Option("--sheet", help="Read this sheet only. Repeatable.")]
+MappingFile = Annotated[
+    Path | None, typer.Option("--mapping", help="A mapping (TOML) that settles the columns; it is kept.")
+]
+Propose = Annotated[
+    Path | None,
+    typer.Option(
+        "--propose-mapping", help="Write a mapping as it was understood, to be edited; store nothing."
+    ),
+]
+Supersedes = Annotated[
+    list[str],
+    typer.Option(
+        "--supersedes", metavar="EV-N", help="The new rows replace those of this table. Repeatable."
+    ),
+]
+Beside = Annotated[
+    bool, typer.Option("--beside", help="Keep earlier rows with other values beside the new ones.")
+]
+Resolves = Annotated[
+    str,
+    typer.Option(
+        "--resolves", help="With --supersedes: the discrepancy report of a fail and its disposition."
+    ),
+]
+Hidden = Annotated[bool, typer.Option("--include-hidden", help="Read hidden rows, too.")]
+
+
+def attach(
+    files: Files,
+    project: ProjectOption = "",
+    state: State = [],  # noqa: B006
+    sheet: Sheets = [],  # noqa: B006
+    mapping: MappingFile = None,
+    propose_mapping: Propose = None,
+    supersedes: Supersedes = [],  # noqa: B006
+    beside: Beside = False,
+    resolves: Resolves = "",
+    include_hidden: Hidden = False,
+    take_rest: TakeRestOption = False,
+    yes: YesOption = False,
+    dry_run: DryRunOption = False,
+    as_json: JsonOption = False,
+    by: ByOption = "",
+) -> int:
+    """Attach measurement files: show how every column is understood, what is rejected, then store it."""
+    from specflow.workflows.attach import AttachOptions, Decision
+
+    options = AttachOptions(_statements(state), mapping, sheet, include_hidden)
+    decision = Decision(person(by), take_rest, supersedes, beside, resolves)
+    if propose_mapping is not None and len(files) > 1:
+        raise SpecflowError("a mapping is proposed for one file at a time", hint="name one file")
+    with open_store(project, read_only=dry_run or propose_mapping is not None) as store:
+        if propose_mapping is not None:
+            return _propose(store, files[0], options, propose_mapping)
+        run = _Run(store, options, decision, yes, dry_run, as_json)
+        return run.attach_all(files)
+
+
+def _statements(state: list[str]) -> dict[str, str]:
+    """Take NAME=VALUE apart."""
+    said: dict[str, str] = {}
+    for text in state:
+        name, sign, value = text.partition("=")
+        if not sign or not name.strip() or not value.strip():
+            raise SpecflowError(f"--state {text!r} is not NAME=VALUE", hint="--state block=LNA")
+        said[name.strip()] = value.strip()
+    return said
+
+
+def _propose(store: ProjectStore, file: Path, options: AttachOptions, target: Path) -> int:
+    from specflow.workflows.attach import preview_attach
+
+    preview = preview_attach(store, file, options)
+    if target.exists():
+        raise SpecflowError(
+            "there is a file of this name", where=str(target), hint="give the mapping another name"
+        )
+    target.write_text(preview.measurements.proposal, encoding="utf-8")
+    put(str(target))
+    say(f"edit it, then: specflow attach {file} --mapping {target}")
+    return int(ExitCode.CLEAN)
+
+
+class _Run:
+    """One call of the command: each file is a transaction of its own."""
+
+    def __init__(
+        self,
+        store: ProjectStore,
+        options: AttachOptions,
+        decision: Decision,
+        yes: bool,
+        dry_run: bool,
+        as_json: bool,
+    ) -> None:
+        self._store = store
+        self._options = options
+        self._decision = decision
+        self._yes = yes
+        self._dry_run = dry_run
+        self._as_json = as_json
+        self._data: list[dict[str, Any]] = []
+
+    def attach_all(self, files: list[Path]) -> int:
+        """Attach the files one after the other; a file that is refused does not keep the others out."""
+        outcomes = [self._attach(file) for file in files]
+        if self._as_json:
+            put_json(self._data[0] if len(files) == 1 else self._data)
+        if len(files) > 1:
+            say(f"{outcomes.count(ExitCode.CLEAN)} of {len(files)} files attached or unchanged")
+        return int(max(outcomes))
+
+    def _attach(self, file: Path) -> ExitCode:
+        from specflow.workflows.attach import preview_attach
+
+        try:
+            with progress("reading") as step:
+                step(file.name)
+                preview = preview_attach(self._store, file, self._options)
+            self._show(preview)
+            return ExitCode.CLEAN if self._dry_run and not preview.unresolved else self._accept(preview)
+        except SpecflowError as error:
+            show_error(error)
+            if self._as_json:
+                self._data.append(
+                    {"file": file.name, "error": error.message, "where": error.where, "hint": error.hint}
+                )
+            return error.exit_code
+
+    def _show(self, preview: AttachPreview) -> None:
+        from specflow.cli.tables import put_table
+        from specflow.workflows.attach_tables import (
+            preview_as_json,
+            preview_lines,
+            preview_sentence,
+            preview_tables,
+        )
+
+        if self._as_json:
+            self._data.append(preview_as_json(preview))
+        else:
+            for table in preview_tables(preview):
+                put_table(table)
+                put("")
+        for line in preview_lines(preview):
+            say(line)
+        say(preview_sentence(preview))
+
+    def _accept(self, preview: AttachPreview) -> ExitCode:
+        from specflow.workflows.attach import accept_attach, check_acceptable
+
+        check_acceptable(preview, self._decision)
+        if self._dry_run or preview.is_unchanged:
+            return ExitCode.CLEAN
+        if not self._yes and not ask("store this?"):
+            say("nothing was stored")
+            return ExitCode.CLEAN
+        stored = accept_attach(self._store, preview, self._decision)
+        if self._as_json:
+            self._data[-1] |= {"stored": list(stored.tables), "revision": stored.revision}
+        say(
+            f"stored as {', '.join(stored.tables) or 'a mapping'}; the project is at revision {stored.revision}"
+        )
+        return ExitCode.CLEAN

@@ -1,0 +1,173 @@
+"""Condition columns of a table, with what is stated for all of its rows."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, field
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.importers.measured.cells import Rows
+from specflow.importers.measured.meaning import ColumnMeaning
+from specflow.importers.measured.readings import read_numbers
+from specflow.importers.measured.rejects import Rejects
+from specflow.importers.measured.result import Question, Role
+from specflow.importers.measured.stated import Stated
+from specflow.importers.measured.tables import FoundTable
+from specflow.importers.measured.words import fill_down, read_words
+from specflow.importers.readers import address, column_letter
+from specflow.model.columns import Columns, TextColumn
+from specflow.model.evidence import ConditionColumn
+from specflow.units import format_unit, parse_unit
+
+
+@dataclass
+class ReadConditions:
+    """The documents and arrays of all conditions of a table."""
+
+    columns: Columns
+    documents: list[ConditionColumn] = field(default_factory=list)
+    questions: list[Question] = field(default_factory=list)
+    notes: list[str] = field(default_factory=list)
+
+
+def read_conditions(
+    table: FoundTable, meanings: Sequence[ColumnMeaning], stated: Stated, rows: Rows, rejects: Rejects
+) -> ReadConditions:
+    """Read the condition columns; what a column gives per row goes before what is stated for the table."""
+    numeric: dict[str, NDArray[np.float64]] = {}
+    text: dict[str, TextColumn] = {}
+    units: dict[str, str] = {}
+    read = ReadConditions(Columns(len(rows), numeric, text, units))
+    for meaning in meanings:
+        if meaning.role is not Role.CONDITION:
+            continue
+        name = meaning.dimension
+        if meaning.is_text:
+            words = read_words(table, meaning.column, rows, rejects)
+            words = _merged_words(table, meaning.column, rows, words, read.notes)
+            text[name] = fill_down(words) if meaning.fill_down else words
+            blank = int(np.count_nonzero(text[name].codes < 0))
+        else:
+            values = _numbers(table, meaning, rows, rejects, read)
+            numeric[name] = values
+            if meaning.unit and (unit := format_unit(parse_unit(meaning.unit))) != "1":
+                units[name] = unit
+            blank = int(np.count_nonzero(np.isnan(values)))
+        if blank:
+            read.notes.append(
+                f"column {column_letter(meaning.column)} states no {name.replace('_', ' ')} in {blank} of {len(rows)} rows"
+                + ("" if meaning.fill_down else "; fill_down = true in a mapping takes the cell above")
+            )
+        read.documents.append(_document(meaning, units.get(name, "")))
+    _add_stated(stated, rows, numeric, text, units, read)
+    return read
+
+
+def _numbers(
+    table: FoundTable, meaning: ColumnMeaning, rows: Rows, rejects: Rejects, read: ReadConditions
+) -> NDArray[np.float64]:
+    own = Rejects(rejects.sheet)
+    numbers = read_numbers(table, meaning.column, meaning.unit, rows, own)
+    rejects.cells += own.cells
+    if numbers.problem:
+        letter = column_letter(meaning.column)
+        remedy = "give the whole column one number format, and attach again"
+        read.questions.append(
+            Question(meaning.header.text, meaning.header.cell, f"column {letter}: {numbers.problem}", remedy)
+        )
+    read.notes += [f"column {column_letter(meaning.column)}: {note}" for note in numbers.notes]
+    values = numbers.low
+    if numbers.high is not numbers.low:
+        for place in np.flatnonzero(numbers.high != numbers.low).tolist():
+            if np.isnan(values[place]):
+                continue
+            rejects.add(int(rows[place]), meaning.column, table.cells(meaning.column).value(int(rows[place])),
+                        "a condition must be one value, not a bound or a range")  # fmt: skip
+            values[place] = np.nan
+    values = _merged_numbers(table, meaning.column, rows, values, read.notes)
+    if meaning.fill_down:
+        last = np.maximum.accumulate(np.where(np.isnan(values), -1, np.arange(len(values))))
+        values = np.where(last >= 0, values[np.maximum(last, 0)], values)
+    return values
+
+
+def _merged_spans(table: FoundTable, column: int, rows: Rows) -> list[tuple[int, NDArray[np.bool_], str]]:
+    """Merged cells that lie within one column: (place of the anchor, the other rows, the range)."""
+    spans = []
+    for area in table.grid.merged:
+        if area.first_column == area.last_column == column and area.first_row >= table.first_row:
+            anchor = np.flatnonzero(rows == area.first_row)
+            if len(anchor):
+                others = (rows > area.first_row) & (rows <= area.last_row)
+                spans.append(
+                    (
+                        int(anchor[0]),
+                        others,
+                        f"{address(area.first_row, column)}:{address(area.last_row, column)}",
+                    )
+                )
+    return spans
+
+
+def _merged_words(
+    table: FoundTable, column: int, rows: Rows, words: TextColumn, notes: list[str]
+) -> TextColumn:
+    codes = words.codes.copy()
+    for anchor, others, where in _merged_spans(table, column, rows):
+        codes[others] = codes[anchor]
+        notes.append(f"merged cells {where}: the value holds for all their rows")
+    return TextColumn(codes, words.labels)
+
+
+def _merged_numbers(
+    table: FoundTable, column: int, rows: Rows, values: NDArray[np.float64], notes: list[str]
+) -> NDArray[np.float64]:
+    for anchor, others, where in _merged_spans(table, column, rows):
+        values[others] = values[anchor]
+        notes.append(f"merged cells {where}: the value holds for all their rows")
+    return values
+
+
+def merged_items(
+    table: FoundTable, column: int, rows: Rows, words: TextColumn, notes: list[str]
+) -> TextColumn:
+    """Items written in merged cells hold for all rows of the cell."""
+    return _merged_words(table, column, rows, words, notes)
+
+
+def _document(meaning: ColumnMeaning, unit: str) -> ConditionColumn:
+    return ConditionColumn(
+        dimension=meaning.dimension,
+        kind="text" if meaning.is_text else "numeric",
+        unit=unit,
+        column=meaning.column,
+        header=meaning.header.text,
+    )
+
+
+def _add_stated(
+    stated: Stated,
+    rows: Rows,
+    numeric: dict[str, NDArray[np.float64]],
+    text: dict[str, TextColumn],
+    units: dict[str, str],
+    read: ReadConditions,
+) -> None:
+    for name, condition in stated.conditions.items():
+        if name in numeric or name in text:
+            read.notes.append(
+                f"{name.replace('_', ' ')} is given row by row; that it is {condition.by} was not used"
+            )
+            continue
+        if isinstance(condition.value, str):
+            text[name] = TextColumn(np.zeros(len(rows), np.int32), (condition.value,))
+        else:
+            numeric[name] = np.full(len(rows), condition.value)
+            if condition.unit:
+                units[name] = condition.unit
+        kind = "text" if isinstance(condition.value, str) else "numeric"
+        read.documents.append(
+            ConditionColumn(dimension=name, kind=kind, unit=condition.unit, stated_by=condition.by)  # type: ignore[arg-type]
+        )

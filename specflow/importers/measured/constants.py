@@ -1,0 +1,61 @@
+"""Columns that say the same in every row: they speak of the whole table (set-up, procedure, resolution bandwidth)."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from specflow.importers.measured.header_text import read_header
+from specflow.importers.measured.mapping import LayoutMapping
+from specflow.importers.measured.rejects import cell_text
+from specflow.importers.measured.result import Role
+from specflow.importers.measured.roles import role_of_words, uncertainty_of
+from specflow.importers.measured.stated import Said, Stated, canonical
+from specflow.importers.measured.tables import FoundTable
+from specflow.importers.readers import column_letter, is_blank, looks_numeric
+
+_OF_THE_TABLE = frozenset(
+    ["block", "method", "stage", "set_up", "performer", "procedure", "procedure_revision", "model", "model_version", "bandwidth", "spectrum", "plane", "statistic", "hardware"]
+)
+_MAY_VARY = frozenset(("performer", "hardware"))
+
+
+@dataclass(frozen=True, slots=True)
+class ConstantColumn:
+    """A column that speaks of the whole table; ``problem`` when its rows disagree."""
+
+    role: Role
+    reason: str
+    problem: str = ""
+
+
+def read_constants(table: FoundTable, mapping: LayoutMapping, stated: Stated) -> dict[int, ConstantColumn]:
+    """Find such columns by their headers and add what they say to ``stated``, unless somebody said it already."""
+    found: dict[int, ConstantColumn] = {}
+    for header in table.headers:
+        parts = read_header(header.text)
+        name = canonical(parts.name)
+        if name not in _OF_THE_TABLE or role_of_words(parts) or uncertainty_of(parts):
+            continue
+        mapped = mapping.column(header.text, column_letter(header.column))
+        if mapped is not None and (mapped.role or mapped.parameter or mapped.dimension):
+            continue
+        words = {
+            cell_text(value).strip()
+            for value in table.cells(header.column).at(table.rows)
+            if not is_blank(value)
+        }
+        role = Role.BANDWIDTH if name == "bandwidth" else Role.REMARK
+        if len(words) > 1 and name in _MAY_VARY:
+            found[header.column] = ConstantColumn(role, f"the {name} of each row; kept as a remark")
+        elif len(words) > 1:
+            problem = f"says more than one {name.replace('_', ' ')}: {', '.join(sorted(words)[:4])}"
+            found[header.column] = ConstantColumn(role, "", problem)
+        elif words:
+            text = words.pop()
+            unit = parts.unit or header.unit
+            text = f"{text} {unit}" if unit and looks_numeric(text) else text
+            stated.said.setdefault(
+                name, Said(text, f"stated in column {column_letter(header.column)}", parts.name)
+            )
+            found[header.column] = ConstantColumn(role, f"the {name.replace('_', ' ')} of the table: {text}")
+    return found

@@ -1,0 +1,78 @@
+"""Facts stated above a table: ``DUT: SN 0007``, ``RBW | 1 MHz``, ``# Date = 2026-03-02``."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Iterator
+from dataclasses import dataclass
+from datetime import date, datetime
+
+from specflow.importers.measured.header_text import read_header
+from specflow.importers.readers import Grid, OddKind, Value, address, is_blank, looks_numeric
+
+_PAIR = re.compile(r"^\s*(?P<key>[^:=]{1,60}?)\s*[:=]\s*(?P<value>.*)$", re.DOTALL)
+
+
+@dataclass(frozen=True, slots=True)
+class Fact:
+    """A key with its value as text, and the cell the value stands in."""
+
+    key: str
+    value: str
+    cell: str
+
+
+@dataclass(frozen=True, slots=True)
+class Preamble:
+    """What stands above a table: its facts, and the first line that is none (the title)."""
+
+    facts: tuple[Fact, ...]
+    title: str = ""
+
+
+def read_preamble(grid: Grid, top: int, header_row: int) -> Preamble:
+    """Read the rows from ``top`` up to the header row."""
+    facts: list[Fact] = []
+    title = ""
+    for row in range(top, header_row):
+        cells = [
+            (column, value) for column, value in enumerate(grid.row(row), start=1) if not is_blank(value)
+        ]
+        found = list(_facts(grid, row, cells))
+        facts += found
+        if not found and not title and cells and isinstance(cells[0][1], str):
+            title = " ".join(cells[0][1].split())
+    return Preamble(tuple(facts), title)
+
+
+def _facts(grid: Grid, row: int, cells: list[tuple[int, Value]]) -> Iterator[Fact]:
+    place = 0
+    while place < len(cells):
+        column, value = cells[place]
+        place += 1
+        if not isinstance(value, str) or looks_numeric(value):
+            continue
+        pair = _PAIR.match(value)
+        if pair and pair["value"]:
+            yield Fact(pair["key"].strip(), " ".join(pair["value"].split()), address(row, column))
+        elif place < len(cells) and (pair or len(cells) % 2 == 0):
+            key = pair["key"].strip() if pair else value.strip()
+            there, beside = cells[place]
+            yield Fact(key, _value_text(grid, row, there, beside, key), address(row, there))
+            place += 1
+
+
+def _value_text(grid: Grid, row: int, column: int, value: Value, key: str) -> str:
+    """The value as text; a bare number takes the unit of its number format, or that of the key."""
+    if isinstance(value, datetime):
+        return value.date().isoformat()
+    if isinstance(value, date):
+        return value.isoformat()
+    text = f"{value:.15g}" if isinstance(value, float) else " ".join(str(value).split())
+    if not looks_numeric(text):
+        return text
+    odd = grid.odd.at(row, column)
+    if odd is not None and odd.kind is OddKind.UNIT_FORMAT:
+        return f"{text} {odd.unit}"
+    unit = read_header(key).unit
+    return f"{text} {unit}" if unit else text

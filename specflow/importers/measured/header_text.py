@@ -1,0 +1,110 @@
+"""A header taken apart: name, unit, what stands after "@", coverage factor. Spelling only; nothing is judged here."""
+
+from __future__ import annotations
+
+import re
+from dataclasses import dataclass
+from functools import lru_cache
+
+from specflow.errors import UnitError
+from specflow.parameters.headers import looks_like_unit, split_header
+from specflow.units import Unit, parse_unit
+
+_BRACKET = re.compile(r"\(([^()]*)\)|\[([^\[\]]*)\]|\{([^{}]*)\}")
+_COVERAGE = re.compile(r"[,;]?\s*[(\[]?\s*\bk\s*=\s*(?P<k>[0-9]+(?:[.,][0-9]+)?)\s*[)\]]?", re.IGNORECASE)
+_PLACE = re.compile(r"\s*@\s*(?P<place>.+)$")
+_TAIL = re.compile(r"^(?P<name>.*\S)\s+(?P<unit>°\s?[CFK]|[^\s\w]*d[Bb]\S*|\S*Hz|\S*[WVA]|%|deg\w*|K|ppm)$")
+_WORDS_NOT_UNITS = frozenset(
+    ["min", "in", "day", "year", "sample", "samples", "symbol", "symbols", "oct", "dec", "number", "none", "mil", "g", "t"]
+)
+
+
+@dataclass(frozen=True, slots=True)
+class HeaderText:
+    """``unit`` as written ("" without one); ``odd_unit`` stands where a unit would but is none that is known.
+
+    ``place`` is what follows "@"; ``k`` a coverage factor; ``bracketed`` other words in brackets.
+    """
+
+    text: str
+    name: str
+    unit: str = ""
+    odd_unit: str = ""
+    place: str = ""
+    k: float | None = None
+    bracketed: tuple[str, ...] = ()
+
+
+@lru_cache(maxsize=4096)
+def read_header(text: str) -> HeaderText:
+    """Take a header apart: "Gain @ antenna face (dB)", "EIRP / dBm", "f, GHz", "U (dB), k=2", "Temp °C"."""
+    whole = " ".join(text.split())
+    coverage = _COVERAGE.search(whole)
+    rest = _COVERAGE.sub(" ", whole).strip() if coverage else whole
+    k = float(coverage["k"].replace(",", ".")) if coverage else None
+    rest, unit, odd, bracketed = _without_brackets(rest)
+    place = _PLACE.search(rest)
+    found = place["place"].strip() if place else ""
+    rest = _PLACE.sub("", rest).strip() if place else rest
+    if not unit and found:
+        found, unit = _without_tail(found) if not _starts_with_number(found) else (found, "")
+    if not unit and not odd:
+        rest, unit = _without_tail(rest)
+    return HeaderText(whole, rest.strip(" ,;:/-"), unit, odd, found, k, bracketed)
+
+
+def known_unit(text: str) -> Unit | None:
+    """Return the unit that a text spells, None when it spells none."""
+    try:
+        return parse_unit(text)
+    except UnitError:
+        return None
+
+
+def header_key(text: str) -> str:
+    """Return what two headers are compared by: case, blanks and punctuation do not matter, the unit does."""
+    return re.sub(r"[\s_.,;:*]+", "", text.casefold().replace("[", "(").replace("]", ")"))
+
+
+def _without_brackets(text: str) -> tuple[str, str, str, tuple[str, ...]]:
+    """Return (text outside brackets, unit, what looks like a unit and is none, other words in brackets)."""
+    unit, odd, others = "", "", []
+    for match in _BRACKET.finditer(text):
+        inside = next(group for group in match.groups() if group is not None).strip()
+        if not unit and _is_unit(inside):
+            unit = inside
+        elif inside:
+            others.append(inside)
+    if not unit:
+        odd = next((one for one in others if _resembles_unit(one)), "")
+        others = [one for one in others if one != odd]
+    return " ".join(_BRACKET.sub(" ", text).split()), unit, odd, tuple(others)
+
+
+def _is_unit(text: str) -> bool:
+    if text.casefold() in _WORDS_NOT_UNITS or not text:
+        return False
+    return known_unit(text) is not None or (looks_like_unit(text) and not _resembles_unit(text))
+
+
+def _resembles_unit(text: str) -> bool:
+    """Whether a text was meant as a unit: decibels of something unheard of, or a unit with two meanings."""
+    if known_unit(text) is not None or " " in text:
+        return False
+    return text[:2].casefold() == "db" or looks_like_unit(text)
+
+
+def _without_tail(text: str) -> tuple[str, str]:
+    """Cut a unit off the end: "EIRP / dBm", "f, GHz", "Gain in dB", "gain_db", "Temp °C"."""
+    unit = split_header(text).unit
+    if unit and text.casefold().endswith(unit.casefold()) and unit.casefold() not in _WORDS_NOT_UNITS:
+        name = re.sub(r"(\bin|[,/_])\s*$", "", text[: -len(unit)].rstrip())
+        return name, unit
+    tail = _TAIL.match(text)
+    if tail and known_unit(tail["unit"]) is not None:
+        return re.sub(r"(\bin|[,/_])\s*$", "", tail["name"].rstrip()), tail["unit"]
+    return text, ""
+
+
+def _starts_with_number(text: str) -> bool:
+    return re.match(r"[+\-−]?[0-9]", text) is not None

@@ -1,0 +1,73 @@
+"""A mapping as we would write it: every column with its role and the reason, for a person to edit."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import replace
+
+from specflow.importers.measured.layout import sheet_pattern
+from specflow.importers.measured.mapping import FORMAT, ColumnMapping, LayoutMapping, write_mapping
+from specflow.importers.measured.meaning import ColumnMeaning
+from specflow.importers.measured.result import Role
+from specflow.importers.measured.tables import FoundTable
+from specflow.importers.readers import column_letter
+from specflow.model.evidence import SpectrumKind
+
+HEAD = f"""# A mapping of measurement tables: how the columns of each layout are to be read.
+# A layout is recognised by its headers, their units and their order, not by the name of the file.
+# role: value, condition, item, uncertainty, date, requirement, stated limit, stated verdict, index, remark, not read
+# value:       parameter, unit; plane, statistic, polarisation, bandwidth = "1 MHz", spectrum = "noise-like" or "discrete"
+# condition:   dimension, unit; fill_down = true where a blank cell means the one above
+# uncertainty: unit, k = 2 (1: a standard uncertainty), of = "header of the values"
+# table:       block, method, stage; [table.stated] for conditions that hold for all rows; header_rows = 2;
+#              include_hidden_rows, keep_summary_rows, skip = true
+# pivot:       [table.pivot] header = "Gain @ {{frequency}} GHz", parameter, unit, units = {{ frequency = "GHz" }}
+format = {FORMAT}
+"""
+
+
+def propose(
+    tables: Sequence[tuple[FoundTable, str, LayoutMapping, Sequence[ColumnMeaning], str]],
+) -> str:
+    """Return the TOML for tables given as (table, layout key, mapping in use, meanings, title)."""
+    parts = [HEAD]
+    for table, key, mapping, meanings, title in tables:
+        columns = tuple(_entry(meaning, mapping) for meaning in meanings if meaning.role is not Role.PIVOT)
+        reasons = {
+            f"{column_letter(meaning.column)}:{meaning.header.text}": _reason(meaning) for meaning in meanings
+        }
+        proposed = replace(
+            mapping, layout=key, title=mapping.title or title, sheet=sheet_pattern(table), columns=columns
+        )
+        parts.append(write_mapping(proposed, reasons))
+    return "\n".join(parts)
+
+
+def _reason(meaning: ColumnMeaning) -> str:
+    if meaning.question is None:
+        return f"{meaning.header.cell}: {meaning.words()}; {meaning.reason}"
+    return f"{meaning.header.cell}: TO SETTLE. {meaning.question.what}\n{meaning.question.remedy}"
+
+
+def _entry(meaning: ColumnMeaning, mapping: LayoutMapping) -> ColumnMapping:
+    letter = column_letter(meaning.column)
+    used = mapping.column(meaning.header.text, letter)
+    if used is not None:
+        return used
+    entry = ColumnMapping(header=meaning.header.text, column=letter)
+    if meaning.role is Role.VALUE and meaning.quantity is not None:
+        quantity = meaning.quantity
+        return replace(
+            entry, role="value", parameter=quantity.parameter, unit=meaning.unit, plane=quantity.plane,
+            statistic=quantity.statistic, polarisation=quantity.polarisation,
+            spectrum="" if meaning.spectrum is SpectrumKind.UNKNOWN else meaning.spectrum.value,
+        )  # fmt: skip
+    if meaning.role is Role.CONDITION:
+        return replace(entry, role="condition", dimension=meaning.dimension, unit=meaning.unit)
+    if meaning.role is Role.UNCERTAINTY:
+        return replace(entry, role="uncertainty", unit=meaning.unit, k=meaning.k)
+    if meaning.role is Role.BANDWIDTH:
+        return replace(entry, role="remark")
+    if meaning.role is Role.UNRESOLVED:
+        return entry
+    return replace(entry, role=meaning.role.value)

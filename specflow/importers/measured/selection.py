@@ -1,0 +1,94 @@
+"""Which rows of a table are records: hidden rows and summary rows are left out, each with its reason."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Sequence
+
+import numpy as np
+
+from specflow.importers.measured.cells import Rows
+from specflow.importers.measured.mapping import LayoutMapping
+from specflow.importers.measured.meaning import ColumnMeaning
+from specflow.importers.measured.rejects import Rejected, Rejects, cell_text
+from specflow.importers.measured.result import Role
+from specflow.importers.measured.tables import FoundTable
+from specflow.importers.readers import is_blank
+
+_SUMMARY = frozenset(
+    ["mean", "average", "avg", "max", "maximum", "min", "minimum", "median", "worst", "best", "std", "stdev", "std.dev", "sd", "sigma", "total", "sum", "subtotal", "worst-case", "spread", "range", "count", "p-p", "mittelwert", "limit", "limits", "spec", "specification", "requirement", "target", "lsl", "usl", "upper", "lower", "tolerance"]
+)
+_SUMMARY_PHRASES = (
+    "std dev",
+    "standard deviation",
+    "worst case",
+    "upper limit",
+    "lower limit",
+    "spec limit",
+    "sub total",
+)
+
+
+def select_rows(
+    table: FoundTable, meanings: Sequence[ColumnMeaning], mapping: LayoutMapping, rejects: Rejects
+) -> tuple[Rows, list[str]]:
+    """Return the rows that are read, and notes about those that are not."""
+    rows, notes = table.rows, []
+    hidden = (
+        np.isin(rows, list(table.grid.hidden_rows)) if table.grid.hidden_rows else np.zeros(len(rows), bool)
+    )
+    if hidden.any() and mapping.include_hidden_rows:
+        notes.append(f"{int(hidden.sum())} hidden rows were read, as the mapping says")
+    elif hidden.any():
+        reason = (
+            "the row is hidden (filtered or collapsed): show it, or include_hidden_rows = true in a mapping"
+        )
+        _reject(table, rows[hidden], reason, rejects)
+        rows = rows[~hidden]
+    if not mapping.keep_summary_rows:
+        summary = _summary_rows(table, meanings, rows)
+        if summary:
+            marked = np.isin(rows, summary)
+            reason = "a summary or limit row, no reading (keep_summary_rows = true in a mapping reads it)"
+            _reject(table, rows[marked], reason, rejects)
+            rows = rows[~marked]
+    return rows, notes
+
+
+def _reject(table: FoundTable, rows: Rows, reason: str, rejects: Rejects) -> None:
+    first = table.headers[0].column
+    for row in rows.tolist():
+        text = " | ".join(cell_text(value) for value in table.grid.row(row) if not is_blank(value))
+        rejects.cells.append(Rejected(row, first, text, reason, whole_row=True))
+
+
+def _summary_rows(table: FoundTable, meanings: Sequence[ColumnMeaning], rows: Rows) -> list[int]:
+    """Rows whose first filled cell is a word like "Mean", unless it stands among words of its column."""
+    wanted = set(rows.tolist())
+    found: list[int] = []
+    before: list[ColumnMeaning] = []
+    for meaning in meanings:
+        cells = table.cells(meaning.column)
+        for row in cells.odd:
+            value = cells.value(row)
+            if row in wanted and isinstance(value, str) and _is_summary(value):
+                first = all(is_blank(table.grid.value(row, one.column)) for one in before)
+                if first and not _is_a_setting(table, meaning, meanings, row):
+                    found.append(row)
+        before.append(meaning)
+    return found
+
+
+def _is_summary(text: str) -> bool:
+    plain = re.sub(r"[:.\s]+", " ", text.casefold()).strip()
+    return (plain.split(" ")[0] in _SUMMARY and len(plain) <= 24) or plain.startswith(_SUMMARY_PHRASES)
+
+
+def _is_a_setting(
+    table: FoundTable, meaning: ColumnMeaning, meanings: Sequence[ColumnMeaning], row: int
+) -> bool:
+    """A mode called "Max" in a row that is complete is a mode; a row "Max" without its conditions is a summary."""
+    if not (meaning.role is Role.CONDITION and meaning.is_text):
+        return False
+    others = [one for one in meanings if one.role in (Role.CONDITION, Role.ITEM) and one is not meaning]
+    return bool(others) and all(not is_blank(table.grid.value(row, one.column)) for one in others)

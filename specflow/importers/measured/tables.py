@@ -1,0 +1,303 @@
+"""Where the tables of a sheet are: the header row below titles and key–value rows, the units row, the rows of data.
+
+A header row is a row of words with numbers below. Of several the first one is taken in which the words are known
+(columns of measurement tables have units, or name what the dictionary knows). A table ends where the next header row
+begins, or where, after a blank row, hardly anything is filled in any more. Blank rows, footnotes and repeated headers
+inside it are stepped over. Several tables below each other are found one after the other.
+"""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass, field
+
+import numpy as np
+
+from specflow.importers.measured.cells import ColumnCells, Flags, Rows, read_column
+from specflow.importers.measured.header_text import header_key, known_unit
+from specflow.importers.readers import Grid, Value, address, is_blank, looks_numeric
+
+Recognises = Callable[[str], bool]
+
+_LIKE_A_READING = re.compile(r"^[<>≤≥=~+\-−±]*\s*[.,]?[0-9]")
+_ONE_READING = re.compile(r"^[<>≤≥~±+\-−]*\s*[0-9][0-9.,]*(?:[eE][+\-]?[0-9]+)?\s*[^\s0-9]{0,6}$")
+_LOOK_AHEAD = 5
+_NO_UNIT = ("", "-", "—", "–", "n/a")
+
+
+@dataclass(frozen=True, slots=True)
+class HeaderCell:
+    """One header: its column, its text as written, and the unit of a units row below it ("" without one)."""
+
+    column: int
+    row: int
+    text: str
+    unit: str = ""
+    unit_row: int | None = None
+
+    @property
+    def cell(self) -> str:
+        """Its address."""
+        return address(self.row, self.column)
+
+
+@dataclass(frozen=True)
+class FoundTable:
+    """A table on a sheet.
+
+    ``top`` is the first row that may speak about it (title, key–value rows); ``rows`` int32 are the row numbers that
+    hold data, among ``first_row`` up to, not including, ``stop_row``. ``headers`` are named columns in order;
+    ``unnamed`` are columns with cells and no header. ``stepped_over`` tells of rows inside that are no data.
+    """
+
+    grid: Grid
+    top: int
+    header_row: int
+    units_row: int | None
+    first_row: int
+    stop_row: int
+    headers: tuple[HeaderCell, ...]
+    rows: Rows
+    unnamed: tuple[int, ...] = ()
+    stepped_over: tuple[str, ...] = ()
+    _cells: dict[int, ColumnCells] = field(default_factory=dict, repr=False, compare=False)
+
+    def cells(self, column: int) -> ColumnCells:
+        """The cells of a column, from ``first_row`` on."""
+        if column not in self._cells:
+            self._cells[column] = read_column(self.grid, column, self.first_row, self.stop_row)
+        return self._cells[column]
+
+    @property
+    def place(self) -> str:
+        """Header row and rows as people say it: "A5:D17"."""
+        if not self.headers:
+            return ""
+        last = int(self.rows[-1]) if len(self.rows) else self.header_row
+        columns = [header.column for header in self.headers]
+        return f"{address(self.header_row, min(columns))}:{address(last, max(columns))}"
+
+
+def find_tables(grid: Grid, recognises: Recognises) -> tuple[FoundTable, ...]:
+    """Return the tables of a sheet from top to bottom; ``recognises`` says whether a header means something."""
+    tables = []
+    top = grid.first_row
+    while (row := _header_row(grid, top, recognises)) is not None:
+        table = cut_table(grid, top, row, 1, recognises)
+        tables.append(table)
+        top = table.stop_row
+    return tuple(tables)
+
+
+def cut_table(grid: Grid, top: int, row: int, header_rows: int, recognises: Recognises) -> FoundTable:
+    """Return the table whose header begins in ``row`` and has ``header_rows`` rows."""
+    headers = _headers(grid, row, header_rows)
+    units_row = _units_row(grid, row + header_rows, headers)
+    if units_row is not None:
+        headers = tuple(_with_unit(grid, header, units_row) for header in headers)
+    first = row + header_rows if units_row is None else units_row + 1
+    return _Body(grid, headers, first, recognises).table(top, row, units_row)
+
+
+def _header_row(grid: Grid, top: int, recognises: Recognises) -> int | None:
+    """The first row of headers that are known; without one the row of words with the most known and the most cells."""
+    best: tuple[tuple[int, int], int] | None = None
+    for row in range(top, grid.last_row + 1):
+        texts = _words(grid, row)
+        if len(texts) < 2 or not _has_numbers_below(grid, row, texts):
+            continue
+        known = sum(map(recognises, texts.values()))
+        if known == len(texts) or known >= max(2, (len(texts) + 1) // 2):
+            return row
+        if best is None or (known, len(texts)) > best[0]:
+            best = (known, len(texts)), row
+    return None if best is None else best[1]
+
+
+def _words(grid: Grid, row: int) -> dict[int, str]:
+    """The cells of a row by column when all of them are words; empty when one is a number, a date or an error."""
+    texts: dict[int, str] = {}
+    for column, value in enumerate(grid.rows[row - grid.first_row], start=grid.first_column):
+        if isinstance(value, str):
+            if value and not value.isspace():
+                if looks_numeric(value) or _ONE_READING.match(value.strip()):
+                    return {}
+                texts[column] = " ".join(value.split())
+        else:
+            return {}
+    if len(texts) >= 2 and next(iter(texts.values())).endswith(":"):
+        return {}
+    return texts
+
+
+def _has_numbers_below(grid: Grid, row: int, texts: dict[int, str]) -> bool:
+    seen = 0
+    for below in range(row + 1, grid.last_row + 1):
+        cells = grid.rows[below - grid.first_row]
+        if below in grid.comment_rows or all(is_blank(value) for value in cells):
+            continue
+        filled = [column for column in texts if _is_reading(grid.value(below, column))]
+        if filled and sum(not is_blank(value) for value in cells) >= min(2, len(texts)):
+            return True
+        seen += 1
+        if seen >= _LOOK_AHEAD:
+            return False
+    return False
+
+
+def _is_reading(value: Value) -> bool:
+    if isinstance(value, str):
+        return _LIKE_A_READING.match(value.strip()) is not None
+    return isinstance(value, float | int) and not isinstance(value, bool)
+
+
+def _headers(grid: Grid, row: int, count: int) -> tuple[HeaderCell, ...]:
+    """Headers of one or several rows; the second row fills a lone ``_`` of the first, else it is put behind."""
+    found = []
+    for column in range(grid.first_column, grid.last_column + 1):
+        text = ""
+        for number in range(row, row + count):
+            value = grid.value(number, column)
+            more = " ".join(_header_word(value).split())
+            if re.search(r"(?<!\w)_(?!\w)", text):
+                text = re.sub(r"(?<!\w)_(?!\w)", lambda _, word=more: word, text, count=1)  # type: ignore[misc]
+            else:
+                text = f"{text} {more}".strip()
+        if text:
+            found.append(HeaderCell(column, row, text))
+    return tuple(found)
+
+
+def _header_word(value: Value) -> str:
+    if isinstance(value, float) and value.is_integer():
+        return str(int(value))
+    return str(value)
+
+
+def _units_row(grid: Grid, row: int, headers: tuple[HeaderCell, ...]) -> int | None:
+    """The row below the header when all that is written in it are units."""
+    if row > grid.last_row or row in grid.comment_rows:
+        return None
+    values = [grid.value(row, header.column) for header in headers]
+    texts = [value.strip() if isinstance(value, str) else None for value in values]
+    if any(text is None for text in texts):
+        return None
+    units = [_bare(text) for text in texts if text is not None and text not in _NO_UNIT]
+    if units and all(known_unit(unit) is not None and not looks_numeric(unit) for unit in units):
+        return row
+    return None
+
+
+def _with_unit(grid: Grid, header: HeaderCell, row: int) -> HeaderCell:
+    text = _bare(str(grid.value(row, header.column)).strip())
+    return header if text in _NO_UNIT else HeaderCell(header.column, header.row, header.text, text, row)
+
+
+def _bare(text: str) -> str:
+    return text[1:-1].strip() if text[:1] + text[-1:] in ("[]", "()") else text
+
+
+class _Body:
+    """The rows below a header: which are data, which are stepped over, and where the table ends."""
+
+    def __init__(
+        self, grid: Grid, headers: tuple[HeaderCell, ...], first: int, recognises: Recognises
+    ) -> None:
+        self._grid = grid
+        self._headers = headers
+        self._first = first
+        self._recognises = recognises
+        stop = grid.last_row + 1
+        self._cells = {
+            column: read_column(grid, column, first, stop)
+            for column in range(grid.first_column, grid.last_column + 1)
+        }
+        self._named = [header.column for header in headers]
+        self._over: list[str] = []
+
+    def table(self, top: int, header_row: int, units_row: int | None) -> FoundTable:
+        """Cut the table."""
+        data, stop = self._data_rows()
+        places = np.flatnonzero(data)
+        unnamed = tuple(
+            column
+            for column, cells in self._cells.items()
+            if column not in self._named and cells.filled[places].any()
+        )
+        cells = self._cells if stop == self._grid.last_row + 1 else {}
+        return FoundTable(
+            self._grid,
+            top,
+            header_row,
+            units_row,
+            self._first,
+            stop,
+            self._headers,
+            (places + self._first).astype(np.int32),
+            unnamed,
+            tuple(self._over),
+            dict(cells),
+        )
+
+    def _data_rows(self) -> tuple[Flags, int]:
+        size = max(self._grid.last_row + 1 - self._first, 0)
+        filled = np.zeros(size, np.int32)
+        numeric = np.zeros(size, np.int32)
+        for column in self._named:
+            filled += self._cells[column].filled
+            numeric += self._cells[column].numeric
+        beside = np.zeros(size, np.int32)
+        for column, cells in self._cells.items():
+            if column not in self._named:
+                beside += cells.filled
+        data = filled > 0
+        for row in self._grid.comment_rows:
+            if row >= self._first:
+                data[row - self._first] = False
+        stop = self._end(filled, data)
+        data[stop:] = False
+        for place in np.flatnonzero(data & (numeric == 0)).tolist():
+            action = self._row_of_words(place, int(filled[place]), int(beside[place]))
+            if action == "ends":
+                data[place:] = False
+                return data, self._first + place
+            data[place] = action == "data"
+        return data, self._first + stop
+
+    def _end(self, filled: Rows, data: Flags) -> int:
+        """Where, after a blank row, fewer than half of the usual cells are filled."""
+        if not data.any():
+            return len(filled)
+        usual = float(np.median(filled[data]))
+        after_blank = np.flatnonzero((filled[1:] > 0) & (filled[:-1] == 0)) + 1
+        after_blank = after_blank[data[:1].any() or after_blank > int(np.argmax(data))]
+        sparse = after_blank[filled[after_blank] < usual / 2] if usual > 2 else after_blank[:0]
+        for place in sparse.tolist():
+            if len(self._named) > 1:
+                return int(place)
+        return len(filled)
+
+    def _row_of_words(self, place: int, filled: int, beside: int) -> str:
+        row = self._first + place
+        texts = _words(self._grid, row)
+        mine = {header_key(header.text) for header in self._headers}
+        if len(texts) >= 2 and {header_key(text) for text in texts.values()} <= mine:
+            self._over.append(f"row {row} repeats the headers")
+            return "skip"
+        known = sum(map(self._recognises, texts.values()))
+        if len(texts) >= 2 and known == len(texts) and _has_numbers_below(self._grid, row, texts):
+            return "ends"
+        if filled == 1 and beside == 0 and len(self._named) > 1:
+            words = next(str(cells.values[place]) for cells in self._cells.values() if cells.filled[place])
+            self._over.append(f"row {row} is a remark: {words[:60]!r}")
+            return "skip"
+        return "data"
+
+
+def rows_outside(grid: Grid, tables: tuple[FoundTable, ...]) -> Iterator[int]:
+    """Give the rows with numbers that stand below the last table and belong to none."""
+    start = max((table.stop_row for table in tables), default=grid.first_row)
+    for row in range(start, grid.last_row + 1):
+        if any(_is_reading(value) for value in grid.rows[row - grid.first_row]):
+            yield row

@@ -1,0 +1,86 @@
+"""Which rows of earlier tables a new table would replace: same table key, and same quantity, item and conditions."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from specflow.model.base import code_key
+from specflow.model.evidence import EvidenceColumns, EvidenceTable, Supersession, Withdrawal
+from specflow.model.snapshot import Snapshot
+
+RowKey = tuple[object, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Replacement:
+    """Rows (positions) of an earlier table with the identity of rows of the new one; ``differing``: with other values."""
+
+    earlier: str
+    earlier_rows: int
+    rows: tuple[int, ...]
+    differing: int
+
+    def words(self) -> str:
+        """Say it: "12 rows are those of EV-3, 3 with other values"."""
+        values = f"{self.differing} with other values" if self.differing else "all with the same values"
+        return f"{len(self.rows)} rows are those of {self.earlier}, {values}"
+
+
+def replaced_rows(snapshot: Snapshot, table: EvidenceTable, columns: EvidenceColumns) -> list[Replacement]:
+    """Compare a new table with the earlier ones of its key, but for those replaced or withdrawn as a whole."""
+    gone = {code_key(one.earlier) for one in snapshot.all(Supersession) if one.rows is None}
+    gone |= {code_key(one.table) for one in snapshot.all(Withdrawal) if one.rows is None}
+    earlier = [
+        one for one in snapshot.tables if one.table_key == table.table_key and code_key(one.id) not in gone
+    ]
+    if not earlier or not table.table_key:
+        return []
+    mine = _rows(table, columns)
+    arrays = snapshot.load_columns([one.id for one in earlier])
+    found = []
+    for one in earlier:
+        past = {
+            row for step in snapshot.all(Supersession) if step.earlier == one.id for row in step.rows or ()
+        }
+        same = [
+            (row, values != mine[key][1])
+            for key, (row, values) in _rows(one, arrays[one.id]).items()
+            if key in mine and row not in past
+        ]
+        if same:
+            rows = tuple(sorted(row for row, _ in same))
+            found.append(Replacement(one.id, one.rows, rows, sum(differs for _, differs in same)))
+    return found
+
+
+def _rows(table: EvidenceTable, columns: EvidenceColumns) -> dict[RowKey, tuple[int, tuple[object, ...]]]:
+    """Row identity → (position, what the row says); repeated readings under one identity are told apart by order."""
+    quantities = tuple(sorted(column.quantity.model_dump_json().casefold() for column in table.values))
+    items = [label.casefold() for label in columns.items.labels]
+    parts: list[list[object]] = [[items[code] if code >= 0 else "" for code in columns.items.codes.tolist()]]
+    for name, values in sorted(columns.conditions.numeric.items()):
+        unit = columns.conditions.units.get(name, "")
+        parts.append([(name, unit, value) if value == value else None for value in values.tolist()])
+    for name, words in sorted(columns.conditions.text.items()):
+        parts.append(
+            [(name, words.labels[code].casefold()) if code >= 0 else None for code in words.codes.tolist()]
+        )
+    named = sorted(table.values, key=lambda column: column.quantity.model_dump_json())
+    units = tuple(column.unit for column in named)
+    readings = [
+        np.column_stack([columns.values[column.name].low, columns.values[column.name].high]).tolist()
+        for column in named
+    ]
+    rows: dict[RowKey, tuple[int, tuple[object, ...]]] = {}
+    seen: dict[RowKey, int] = {}
+    for row, identity in enumerate(zip(*parts, strict=True)):
+        turn = seen.get(identity, 0)
+        seen[identity] = turn + 1
+        told: tuple[object, ...] = (
+            units,
+            *(tuple(None if v != v else v for v in reading[row]) for reading in readings),
+        )
+        rows[(quantities, *identity, turn)] = (row, told)
+    return rows
