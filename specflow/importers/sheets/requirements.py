@@ -60,47 +60,56 @@ def _requirement(row: SheetRow, intake: Intake) -> Requirement | None:
     block = intake.find(Block, code)
     quantity = _quantity(row, intake, named, limit, block)
     parents, reason = _parents(row, intake)
-    rule = decision_rule(row, limit, parameter)
     conditions = _conditions(row, intake)
-    if limit is not None:
-        check_inputs(row, intake, limit, conditions)
-    fields = {
-        "title": row.prose("title") or (parameter.title if parameter else ""),
-        "statement": row.prose("statement"),
-        "source": Source(
-            document=row.prose("source_document"),
-            issue=row.prose("source_issue"),
-            paragraph=row.prose("source_paragraph"),
-        ),
-        "kind": row.prose("kind") or "performance",
-        "tier": row.choice("tier", Tier, block.tier if block else Tier.SYSTEM),
-        "obligation": row.choice("obligation", Obligation, Obligation.SHALL),
-        "open_value": _open_value(row, limit),
-        "conditions": conditions,
-        "applicability": _applicability(row),
-        "provers": provers(row, intake),
-        "met_by_lower_level": row.yes("met_by_lower_level", False),
-        "needs_allocation": row.yes("needs_allocation", None),
-        **{name: row.prose(name) for name in _PROSE},
-    }
-    _check_not_applicable(row)
-    if limit is None or quantity is None or not row.sound:
+    rule, who = decision_rule(row, limit, parameter), provers(row, intake)
+    standing = _standing(row, limit, block)
+    if limit is None or quantity is None:
         return None
+    check_inputs(row, intake, limit, conditions)
     return row.build(
         Requirement,
         id=row.subject,
+        title=row.prose("title") or (parameter.title if parameter else ""),
         block=code,
         quantity=quantity,
         limit=_with_known_tolerance(row, with_test_tolerance(row, limit), intake),
         parents=parents,
         derived_reason=reason,
+        conditions=conditions,
         decision_rule=rule,
+        provers=who,
         origin=row.origin(_limit_column(row)),
-        **fields,
+        **standing,
+        **_said(row),
     )
 
 
+def _said(row: SheetRow) -> dict[str, object]:
+    """The fields that are free text."""
+    source = Source(
+        document=row.prose("source_document"),
+        issue=row.prose("source_issue"),
+        paragraph=row.prose("source_paragraph"),
+    )
+    kind = row.prose("kind") or "performance"
+    return {"source": source, "kind": kind, **{name: row.prose(name) for name in _PROSE}}
+
+
+def _standing(row: SheetRow, limit: Limit | None, block: Block | None) -> dict[str, object]:
+    """The fields that say how the requirement stands: how binding, where, open or not, applicable or not."""
+    _check_not_applicable(row)
+    return {
+        "tier": row.choice("tier", Tier, block.tier if block else Tier.SYSTEM),
+        "obligation": row.choice("obligation", Obligation, Obligation.SHALL),
+        "open_value": _open_value(row, limit),
+        "applicability": _applicability(row),
+        "met_by_lower_level": row.yes("met_by_lower_level", False),
+        "needs_allocation": row.yes("needs_allocation", None),
+    }
+
+
 _PROSE = (
+    "statement",
     "owner",
     "not_applicable_reason",
     "not_applicable_approver",
