@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from functools import cache
 from importlib.resources import files
+from urllib.parse import quote
 
 import jinja2
 
@@ -15,7 +16,22 @@ extension = ".html"
 
 def render(report: Report) -> bytes:
     """Return the page."""
-    return _template().render(report=report).encode()
+    names = _anchors(report)
+    return _template().render(report=report, anchors=names, starts=_starts(names)).encode()
+
+
+def _anchors(report: Report) -> dict[str, tuple[str, int]]:
+    """Return where links lead: to the first row about something, by its place in its table."""
+    known: dict[str, tuple[str, int]] = {}
+    for table in report.tables:
+        for place, row in enumerate(table.rows):
+            known.setdefault(f"{table.key}/{row.id}", (table.key, place))
+    return known
+
+
+def _starts(anchors: dict[str, tuple[str, int]]) -> dict[tuple[str, int], str]:
+    """Return the name of every row that a link may lead to; an id may hold blanks, a name may not."""
+    return {place: quote(link, safe="/") for link, place in anchors.items()}
 
 
 @cache

@@ -7,21 +7,26 @@ from __future__ import annotations
 
 import io
 import re
+from collections.abc import Sequence
+from dataclasses import dataclass
 from datetime import UTC, datetime
 from typing import Any
 
 import xlsxwriter
 
-from specflow.model.report import Align, CellTone, Report, ReportCell, ReportTable
+from specflow.model.report import Align, CellTone, Report, ReportCell, ReportRow, ReportTable
 
 title = "Workbook"
 extension = ".xlsx"
 
 # A fixed date of creation: the same report gives the same bytes. What it was made from stands in its "about" sheet.
 CREATED = datetime(2000, 1, 1, tzinfo=UTC).replace(tzinfo=None)
+HEADER = 3  # row of the headers, from 0
 MOST_ROWS = 1_048_000
+MOST_LINKS = 60_000  # a sheet may hold 65,530 links
+MOST_TEXT = 32_767  # characters in a cell
 FIGURE = re.compile(r"^(?P<sign>[+-]?)(?P<digits>\d+(?:\.(?P<decimals>\d+))?)(?P<unit>[^\de].*)?$")
-FILLS = {
+FILLS: dict[CellTone, dict[str, Any]] = {
     CellTone.PLAIN: {},
     CellTone.GOOD: {"bg_color": "#DDEFE3"},
     CellTone.DOUBTFUL: {"bg_color": "#FBEFD0"},
@@ -31,17 +36,50 @@ FILLS = {
 
 
 def render(report: Report) -> bytes:
-    """Return the workbook: a sheet a table, headers frozen and filterable."""
+    """Return the workbook: a sheet a table (several where it has more rows than a sheet may), headers frozen."""
     buffer = io.BytesIO()
     book = xlsxwriter.Workbook(
         buffer, {"in_memory": True, "strings_to_formulas": False, "strings_to_urls": False}
     )
     book.set_properties({"title": report.title, "comments": report.subtitle, "created": CREATED})
     styles = _Styles(book)
-    for table in report.tables:
-        _write_table(book, table, styles)
+    parts = _parts(report)
+    targets = _targets(parts)
+    for part in parts:
+        _write_part(book, part, styles, targets)
     book.close()
     return buffer.getvalue()
+
+
+@dataclass(frozen=True, slots=True)
+class _Part:
+    """The rows of a table that go on one sheet."""
+
+    table: ReportTable
+    sheet: str
+    rows: tuple[ReportRow, ...]
+
+
+def _parts(report: Report) -> list[_Part]:
+    names: list[str] = []
+    parts = []
+    for table in report.tables:
+        starts = range(0, max(len(table.rows), 1), MOST_ROWS)
+        for number, start in enumerate(starts, start=1):
+            title = table.title if len(starts) == 1 else f"{table.title[:24]} ({number})"
+            names.append(sheet_name(title, names))
+            parts.append(_Part(table, names[-1], table.rows[start : start + MOST_ROWS]))
+    return parts
+
+
+def _targets(parts: list[_Part]) -> dict[str, str]:
+    """Return where links lead: the first row about something, table by table."""
+    targets: dict[str, str] = {}
+    for part in parts:
+        for offset, row in enumerate(part.rows):
+            place = f"internal:'{part.sheet.replace(chr(39), chr(39) * 2)}'!A{HEADER + 2 + offset}"
+            targets.setdefault(f"{part.table.key}/{row.id}", place)
+    return targets
 
 
 class _Styles:
@@ -74,41 +112,48 @@ class _Styles:
         return self._made[(kind,)]
 
 
-def _write_table(book: Any, table: ReportTable, styles: _Styles) -> None:
-    sheet = book.add_worksheet(sheet_name(table.title))
+def _write_part(book: Any, part: _Part, styles: _Styles, targets: dict[str, str]) -> None:
+    table = part.table
+    sheet = book.add_worksheet(part.sheet)
     sheet.write_string(0, 0, table.title, styles.heading("title"))
     if table.intro:
-        sheet.merge_range(
-            1, 0, 1, max(1, min(7, len(table.columns) - 1)), table.intro, styles.heading("intro")
-        )
+        last = max(1, min(7, len(table.columns) - 1))
+        sheet.merge_range(1, 0, 1, last, "", styles.heading("intro"))
+        sheet.write_string(1, 0, table.intro, styles.heading("intro"))
         sheet.set_row(1, 48)
-    header = 3
     for place, column in enumerate(table.columns):
         name = column.title + (f"\n({column.explains})" if column.explains else "")
-        sheet.write_string(header, place, name, styles.heading("header"))
+        sheet.write_string(HEADER, place, name, styles.heading("header"))
         sheet.set_column(place, place, column.width)
-    for offset, row in enumerate(table.rows[:MOST_ROWS]):
+    for offset, row in enumerate(part.rows):
         for place, cell in enumerate(row.cells):
             depth = row.depth if place == 0 else 0
-            _write_cell(sheet, header + 1 + offset, place, cell, table.columns[place].align, depth, styles)
-    sheet.freeze_panes(header + 1, 1)
-    if table.rows:
-        sheet.autofilter(header, 0, header + len(table.rows), len(table.columns) - 1)
+            look = styles.get(cell.tone, table.columns[place].align, figure_format(cell), depth)
+            _write_cell(sheet, HEADER + 1 + offset, place, cell, look, targets)
+    sheet.freeze_panes(HEADER + 1, 1)
+    if part.rows:
+        sheet.autofilter(HEADER, 0, HEADER + len(part.rows), len(table.columns) - 1)
     sheet.set_landscape()
     sheet.fit_to_pages(1, 0)
-    sheet.repeat_rows(header)
+    sheet.repeat_rows(HEADER)
 
 
 def _write_cell(
-    sheet: Any, row: int, place: int, cell: ReportCell, align: Align, depth: int, styles: _Styles
+    sheet: Any, row: int, place: int, cell: ReportCell, look: Any, targets: dict[str, str]
 ) -> None:
-    number_format = figure_format(cell)
-    if cell.number is not None and number_format:
-        sheet.write_number(row, place, cell.number, styles.get(cell.tone, align, number_format, depth))
+    target = targets.get(cell.link, "")
+    if cell.number is not None and figure_format(cell):
+        sheet.write_number(row, place, cell.number, look)
+    elif target and row < MOST_LINKS and cell.text:
+        sheet.write_url(row, place, target, look, _fitting(cell.text))
     elif cell.text:
-        sheet.write_string(row, place, cell.text, styles.get(cell.tone, align, "", depth))
+        sheet.write_string(row, place, _fitting(cell.text), look)
     else:
-        sheet.write_blank(row, place, None, styles.get(cell.tone, align, "", depth))
+        sheet.write_blank(row, place, None, look)
+
+
+def _fitting(text: str) -> str:
+    return text if len(text) <= MOST_TEXT else text[: MOST_TEXT - 1] + "…"
 
 
 def figure_format(cell: ReportCell) -> str:
@@ -123,6 +168,12 @@ def figure_format(cell: ReportCell) -> str:
     return f"{plus}{body}{unit};-{body}{unit}"
 
 
-def sheet_name(title: str) -> str:
-    """Return a title as a sheet name: at most 31 characters, without those a sheet name may not hold."""
-    return re.sub(r"[\[\]:*?/\\]", " ", title)[:31].strip()
+def sheet_name(title: str, taken: Sequence[str] = ()) -> str:
+    """Return a title as a sheet name: at most 31 characters, none that a name may not hold, and not taken yet."""
+    plain = re.sub(r"[\[\]:*?/\\]", " ", title).strip().strip("'")[:31].strip() or "Sheet"
+    known = {name.casefold() for name in taken}
+    name, number = plain, 1
+    while name.casefold() in known:
+        number += 1
+        name = f"{plain[:26]} ({number})"
+    return name

@@ -36,7 +36,10 @@ class ReportColumn(Document):
 
 
 class ReportCell(Document):
-    """A cell: the text shown (rounded once, here), the number behind it if there is one, and where it came from."""
+    """A cell: the text shown (rounded once, here), the number behind it if there is one, and where it came from.
+
+    ``link`` leads to the first row about something in another table of the report: ``points/R-1``.
+    """
 
     text: str = ""
     number: float | None = None

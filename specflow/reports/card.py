@@ -40,7 +40,7 @@ def requirement_card(
         title=requirement.title,
         label=status.label.value,
         tone=label_tone(status.label),
-        limit_words=limit_words(requirement.limit, dictionary.get(requirement.quantity.parameter)),
+        limit_words=limit_words(requirement.limit),
         limit_text=requirement.limit.text,
         proved=proved_words(status),
         k=status.k,
@@ -48,9 +48,7 @@ def requirement_card(
         facts=_facts(requirement, status, snapshot, dictionary, finder),
         bar=margin_bar(requirement, status),
         grids=proof_grids(requirement, status, snapshot, finder),
-        trail=requirement_trail(
-            requirement, snapshot, results, dictionary, finder=finder, most_points=POINTS_IN_TRAIL
-        ),
+        trail=requirement_trail(requirement, snapshot, results, finder=finder, most_points=POINTS_IN_TRAIL),
         remarks=status.remarks,
         findings=findings_about(findings, requirement.id),
         cautions=(EXPOSURE_CAUTION,) if is_radiated(requirement, dictionary) else (),
@@ -62,8 +60,7 @@ def proved_words(status: RequirementStatus) -> str:
     if status.n == 0:
         return "no required points"
     return (
-        f"{share(status.k, status.n)} points proved, {status.n_failing} failing, "
-        f"{status.n_missing} without evidence"
+        f"{share(status.k, status.n)} points proved, {status.n_failing} failing, {status.n_missing} missing"
     )
 
 

@@ -2,13 +2,16 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping, Sequence
 from functools import cached_property
 
 import numpy as np
+from numpy.typing import NDArray
 
 from specflow.conditions import Points, explain_mismatch, match, missing_words
 from specflow.model.base import code_key
-from specflow.model.evidence import EvidenceTable
+from specflow.model.columns import Columns
+from specflow.model.evidence import EvidenceColumns, EvidenceTable
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Snapshot
 from specflow.model.verdict import PointResults, RequirementStatus
@@ -35,6 +38,7 @@ class Lacking:
         self._snapshot = snapshot
         self._finder = finder
         self._left = MOST_EXPLAINED
+        self._held: dict[str, list[tuple[EvidenceTable, Columns]]] = {}
 
     def words(self, place: int, found: PointResults | None) -> str:
         """Return what the point lacks, "" where that cannot be told."""
@@ -43,14 +47,36 @@ class Lacking:
         self._left -= 1
         if found is not None and found.table[place] >= 0:
             return self._gap(self._points, place, found)
-        if not self._tables:
-            return "no record of this quantity"
-        said = [
-            (words.count(";"), f"nearest in {table.id}: {words}")
-            for table in self._tables
-            if (words := explain_mismatch(self._points, place, self._finder.columns(table.id).conditions))
-        ]
-        return min(said, key=lambda pair: pair[0])[1] if said else ""
+        item = found.item if found is not None else ""
+        said = []
+        for table, records in self._records(item):
+            words = explain_mismatch(self._points, place, records)
+            if words:
+                said.append((words.count(";"), f"nearest in {table.id}: {words}"))
+        if not said:
+            return f"no record of item {item}" if item else "no record of this quantity"
+        return min(said, key=lambda pair: pair[0])[1]
+
+    def _records(self, item: str) -> list[tuple[EvidenceTable, Columns]]:
+        """Return the conditions of the values of an item (of any with ""), table by table; looked up once."""
+        key = code_key(item)
+        if key not in self._held:
+            held = []
+            for table, names in self._tables.items():
+                columns = self._finder.columns(table)
+                values = [columns.values[name] for name in names]
+                filled = np.any([np.isfinite(one.low) | np.isfinite(one.high) for one in values], axis=0)
+                rows = np.flatnonzero(filled & self._of_item(columns, item))
+                if len(rows):
+                    held.append((self._finder.table(table), columns.conditions.take(rows)))
+            self._held[key] = held
+        return self._held[key]
+
+    def _of_item(self, columns: EvidenceColumns, item: str) -> NDArray[np.bool_]:
+        if not item:
+            return np.ones(len(columns.source_rows), bool)
+        same = np.array([self._is_item(label, item) for label in columns.items.labels] + [False])
+        return same[columns.items.codes]
 
     def _gap(self, points: Points, place: int, found: PointResults) -> str:
         """Say which part of a range is open; only where one table is all the evidence there is."""
@@ -60,29 +86,29 @@ class Lacking:
         columns = self._finder.columns(table.id)
         values = columns.values[table.values[int(found.column[place])].name]
         good = np.isfinite(values.low) | np.isfinite(values.high)
-        good &= np.array([self._is_item(columns.items.word(row), found.item) for row in range(len(good))])
+        good &= self._of_item(columns, found.item)
         return missing_words(points, place, match(points, columns.conditions), columns.conditions, good)
 
     def _is_item(self, recorded: str, item: str) -> bool:
         known = self._snapshot.items_by_name.get(code_key(recorded))
-        return not item or code_key(known.id if known else recorded) == code_key(item)
+        return code_key(known.id if known else recorded) == code_key(item)
 
     @cached_property
-    def _tables(self) -> list[EvidenceTable]:
-        """The tables with the quantity, those left out whose quantity may not be compared."""
+    def _tables(self) -> Mapping[str, Sequence[str]]:
+        """The value columns with the quantity, by table; those left out that may not be compared."""
         refused = {
             (code_key(one.table), one.column) for one in self._status.mismatches if one.kind != "conditions"
         }
         key = code_key(self._requirement.quantity.parameter)
-        found = [
-            table
-            for table in self._snapshot.tables_of_block.get(code_key(self._requirement.block), ())
-            if table.rows <= MOST_ROWS
-            and any(
-                code_key(column.quantity.parameter) == key
-                and (code_key(table.id), column.name) not in refused
+        found: dict[str, list[str]] = {}
+        for table in self._snapshot.tables_of_block.get(code_key(self._requirement.block), ()):
+            names = [
+                column.name
                 for column in table.values
-            )
-        ]
-        self._finder.fetch({table.id for table in found})
+                if code_key(column.quantity.parameter) == key
+                and (code_key(table.id), column.name) not in refused
+            ]
+            if names and table.rows <= MOST_ROWS:
+                found[table.id] = names
+        self._finder.fetch(set(found))
         return found

@@ -11,20 +11,20 @@ from specflow.model.card import BarAxis, MarginBar
 from specflow.model.requirement import Requirement
 from specflow.model.verdict import PointResults, RequirementStatus
 from specflow.reports.figures import margin, with_unit
-from specflow.reports.points import shown_points
 
 Floats = NDArray[np.float64]
 
 
 def margin_bar(requirement: Requirement, status: RequirementStatus) -> MarginBar | None:
-    """Return the bar over all activities, None without evidence.
+    """Return the bar over all activities and items, None without evidence.
 
     Over values where one limit holds at all points; over margins (the limit at 0) where it differs between points.
     """
     known = [
         (found, found.table >= 0)
         for activity in status.activities
-        if (found := shown_points(activity)) is not None and (found.table >= 0).any()
+        for found in activity.items.values()
+        if (found.table >= 0).any()
     ]
     if not known:
         return None

@@ -38,7 +38,9 @@ MATRIX_COLUMNS = (
     ReportColumn(key="verification", title="Verification", width=34, explains="method, stage, tier"),
     ReportColumn(key="proved", title="Points proved", align=Align.RIGHT, width=13),
     ReportColumn(key="failing", title="Failing", align=Align.RIGHT, width=9),
-    ReportColumn(key="missing", title="Without evidence", align=Align.RIGHT, width=10),
+    ReportColumn(
+        key="missing", title="Missing", align=Align.RIGHT, width=9, explains="no evidence that counts"
+    ),
     ReportColumn(key="verdict", title="Worst verdict", width=16),
     ReportColumn(key="value", title="Governing value", align=Align.RIGHT, width=14, explains="as recorded"),
     ReportColumn(key="margin", title="Margin", align=Align.RIGHT, width=12),
@@ -104,7 +106,6 @@ def governing_tables(results: Results, requirements: Sequence[Requirement]) -> s
 def _what_is_required(
     requirement: Requirement, snapshot: Snapshot, dictionary: Dictionary
 ) -> tuple[ReportCell, ...]:
-    parameter = dictionary.get(requirement.quantity.parameter)
     source = requirement.source
     activities = snapshot.activities_of.get(code_key(requirement.id), ())
     return (
@@ -116,7 +117,7 @@ def _what_is_required(
         text(" ".join(part for part in (source.document, source.issue, source.paragraph) if part)),
         text(quantity_words(requirement, dictionary)),
         text(requirement.limit.text),
-        text(limit_words(requirement.limit, parameter)),
+        text(limit_words(requirement.limit)),
         text(requirement.conditions or ""),
         text(
             "; ".join(

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -28,14 +28,13 @@ FAILING = (Verdict.FAIL, Verdict.CONDITIONAL_FAIL)
 
 @dataclass(frozen=True, slots=True)
 class Sheet:
-    """One grid in the making: the points of one item, and the readings of other items that fail there."""
+    """One grid in the making: the points of one item."""
 
     requirement: Requirement
     status: RequirementStatus
     points: Points | None
     count: int
     found: PointResults | None
-    failing: Mapping[int, PointResults]
     lacking: Lacking
     finder: OriginFinder
 
@@ -49,12 +48,11 @@ class Sheet:
         )
         states[self.found.proved] = STATES.index(PointState.PROVED)
         states[np.isin(self.found.verdict, FAILING)] = STATES.index(PointState.FAILING)
-        states[list(self.failing)] = STATES.index(PointState.FAILING)
         return states
 
     def cell(self, place: int, state: PointState) -> ProofCell:
         """Return one point as a cell."""
-        found = self.failing.get(place, self.found)
+        found = self.found
         words = words_of(self.points, place)
         lacks = self.lacking.words(place, found) if state in (PointState.MISSING, PointState.DOUBTFUL) else ""
         if found is None:
@@ -86,19 +84,22 @@ def verdict_words(verdict: Verdict, state: PointState) -> str:
 def proof_grids(
     requirement: Requirement, status: RequirementStatus, snapshot: Snapshot, finder: OriginFinder
 ) -> tuple[ProofGrid, ...]:
-    """Return one grid for each activity and each item that must prove it (the item shown where any one will do)."""
+    """Return one grid for each activity and each item that must prove it, or that fails somewhere.
+
+    Where any one item will do, that is the one shown.
+    """
     points = points_of(snapshot, requirement)
     lacking = Lacking(requirement, status, points, snapshot, finder)
     grids = []
     for activity in status.activities:
         for item, found, places in shown_items(requirement, activity, snapshot):
-            count = len(places)
-            if count == 0 or (found is not None and count < len(found.verdict)):
+            whole = found is None or len(places) == len(found.verdict)
+            if found is not None and not whole and not np.isin(found.verdict, FAILING).any():
                 continue
             if found is not None:
                 finder.fetch(set(found.tables))
-            failing = _other_fails(requirement, activity, found)
-            sheet = Sheet(requirement, status, points, count, found, failing, lacking, finder)
+            count = len(found.verdict) if found is not None else len(places)
+            sheet = Sheet(requirement, status, points, count, found, lacking, finder)
             grids.append(_grid(sheet, _title(activity, item, sheet)))
     return tuple(grids)
 
@@ -107,22 +108,6 @@ def _title(activity: ActivityResult, item: str, sheet: Sheet) -> str:
     proved = sheet.found.k if sheet.found is not None else 0
     who = f", item {item}" if item else ""
     return f"{activity.activity}{who}: {share(proved, sheet.count)} points proved"
-
-
-def _other_fails(
-    requirement: Requirement, activity: ActivityResult, found: PointResults | None
-) -> Mapping[int, PointResults]:
-    """Return the points at which another item fails, where that counts against the activity."""
-    own = int(np.isin(found.verdict, FAILING).sum()) if found is not None else 0
-    if requirement.provers.rule != "any one" or activity.n_failing <= own:
-        return {}
-    fails: dict[int, PointResults] = {}
-    for other in activity.items.values():
-        if other is not found:
-            for place in np.flatnonzero(np.isin(other.verdict, FAILING)).tolist():
-                if found is None or found.verdict[place] not in FAILING:
-                    fails.setdefault(place, other)
-    return fails
 
 
 def _grid(sheet: Sheet, title: str) -> ProofGrid:

@@ -141,7 +141,7 @@ def points_sentence(results: Results, requirements: Iterable[Requirement]) -> st
     failing = sum(status.n_failing for status in counted)
     missing = sum(status.n_missing for status in counted)
     return (
-        f"{k} of {n} required points proved, {failing} failing, {missing} without evidence "
+        f"{k} of {n} required points proved, {failing} failing, {missing} missing "
         f"({len(counted)} applicable requirements of {len(statuses)})"
     )
 

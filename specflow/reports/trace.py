@@ -17,7 +17,6 @@ from specflow.model.report import CellTone, ReportCell, ReportColumn, ReportRow,
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Results, Snapshot
 from specflow.model.verdict import ActivityResult, PointResults, RequirementStatus, Verdict
-from specflow.parameters import Dictionary
 from specflow.reports.figures import interval, label_tone, margin, share, verdict_tone
 from specflow.reports.lacking import Lacking
 from specflow.reports.origins import OriginFinder
@@ -31,7 +30,6 @@ def requirement_trail(
     requirement: Requirement,
     snapshot: Snapshot,
     results: Results,
-    dictionary: Dictionary,
     *,
     finder: OriginFinder | None = None,
     most_points: int = MOST_POINTS,
@@ -41,9 +39,9 @@ def requirement_trail(
     Of each item at most ``most_points`` points are listed, those that decide first.
     """
     return (
-        *_upwards(requirement, snapshot, results, dictionary, -1, frozenset()),
-        _requirement_step(requirement, results, dictionary, 0),
-        *_allocations(requirement, snapshot, results, dictionary),
+        *_upwards(requirement, snapshot, results, -1, frozenset()),
+        _requirement_step(requirement, results, 0),
+        *_allocations(requirement, snapshot, results),
         *_evidence(requirement, snapshot, results, finder or OriginFinder(snapshot), most_points),
     )
 
@@ -52,7 +50,6 @@ def _upwards(
     requirement: Requirement,
     snapshot: Snapshot,
     results: Results,
-    dictionary: Dictionary,
     depth: int,
     seen: frozenset[str],
 ) -> Iterator[TrailStep]:
@@ -60,15 +57,15 @@ def _upwards(
         parent = snapshot.find(Requirement, code)
         if parent is None or parent.id in seen:
             continue
-        yield from _upwards(parent, snapshot, results, dictionary, depth - 1, seen | {parent.id})
-        yield _requirement_step(parent, results, dictionary, depth)
+        yield from _upwards(parent, snapshot, results, depth - 1, seen | {parent.id})
+        yield _requirement_step(parent, results, depth)
 
 
 def _requirement_step(
-    requirement: Requirement, results: Results, dictionary: Dictionary, depth: int, kind: str = "requirement"
+    requirement: Requirement, results: Results, depth: int, kind: str = "requirement"
 ) -> TrailStep:
     status = results.of(requirement.id)
-    words = limit_words(requirement.limit, dictionary.get(requirement.quantity.parameter))
+    words = limit_words(requirement.limit)
     return TrailStep(
         depth=depth,
         kind=kind,
@@ -79,15 +76,13 @@ def _requirement_step(
     )
 
 
-def _allocations(
-    requirement: Requirement, snapshot: Snapshot, results: Results, dictionary: Dictionary
-) -> Iterator[TrailStep]:
+def _allocations(requirement: Requirement, snapshot: Snapshot, results: Results) -> Iterator[TrailStep]:
     links = {
         code_key(link.child): link for link in snapshot.all(Allocation) if same(link.parent, requirement.id)
     }
     for child in snapshot.children_of.get(code_key(requirement.id), ()):
         link = links.get(code_key(child.id))
-        step = _requirement_step(child, results, dictionary, 1, kind="allocation" if link else "child")
+        step = _requirement_step(child, results, 1, kind="allocation" if link else "child")
         yield step.model_copy(update={"text": f"{child.block}: {step.text}{_allocation_source(link)}"})
 
 
@@ -258,14 +253,12 @@ def _served_step(requirement: Requirement, governed: int, results: Results) -> T
     )
 
 
-def block_trail(
-    block: Block, snapshot: Snapshot, results: Results, dictionary: Dictionary, served: Served
-) -> tuple[TrailStep, ...]:
+def block_trail(block: Block, snapshot: Snapshot, results: Results, served: Served) -> tuple[TrailStep, ...]:
     """Return a block with the blocks above it, its requirements, items and evidence."""
     steps = [*_blocks_above(block, snapshot), _block_step(block, 0)]
     steps.extend(_block_step(child, 1) for child in snapshot.blocks_below.get(code_key(block.id), ()))
     steps.extend(
-        _requirement_step(requirement, results, dictionary, 1)
+        _requirement_step(requirement, results, 1)
         for requirement in snapshot.requirements_of_block.get(code_key(block.id), ())
     )
     steps.extend(

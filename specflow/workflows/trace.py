@@ -30,12 +30,12 @@ def _title(subject: Subject) -> str:
 
 
 def _steps(subject: Subject, evaluation: Evaluation) -> Sequence[TrailStep]:
-    snapshot, results, dictionary = evaluation.snapshot, evaluation.results, evaluation.dictionary
+    snapshot, results = evaluation.snapshot, evaluation.results
     if isinstance(subject, Requirement):
-        return requirement_trail(subject, snapshot, results, dictionary)
+        return requirement_trail(subject, snapshot, results)
     served = requirements_served(snapshot, results)
     if isinstance(subject, Block):
-        return block_trail(subject, snapshot, results, dictionary, served)
+        return block_trail(subject, snapshot, results, served)
     if isinstance(subject, EvidenceTable):
         return table_trail(subject, snapshot, results, served)
     tables = [table for table in snapshot.tables if code_key(table.file) == code_key(subject.id)]
