@@ -18,11 +18,11 @@ from specflow.limits.conversion import same_unit_spelling
 from specflow.model.limit import Limit, Rule
 from specflow.model.parameter import QuantityIdentity
 from specflow.model.requirement import Requirement
-from specflow.model.verdict import PointResults, Verdict
+from specflow.model.verdict import Verdict
 from specflow.parameters import Dictionary
 from specflow.verification.bandwidths import states_bandwidth
 from specflow.verification.comparable import Wanted
-from specflow.verification.points import ItemPoints
+from specflow.verification.points import ItemPoints, absent
 
 Codes = NDArray[np.int8]
 
@@ -108,26 +108,3 @@ def _looser(effective: Codes, proved: NDArray[np.bool_]) -> Codes:
     any_proved = proved.any(axis=0)
     verdict[any_proved] = best[any_proved]
     return verdict
-
-
-def absent(item: str, n: int) -> ItemPoints:
-    """Return an item without any evidence at any of n points."""
-    nothing, none = np.full(n, np.nan), np.full(n, -1, np.int32)
-    verdict, false = np.full(n, Verdict.NONE, np.int8), np.zeros(n, bool)
-    results = PointResults(
-        item,
-        verdict,
-        false,
-        nothing,
-        nothing,
-        nothing,
-        nothing,
-        nothing,
-        nothing,
-        nothing,
-        none,
-        none,
-        none,
-        (),
-    )
-    return ItemPoints(item, results, (), verdict, false, np.full(n, -1, np.int8), false, false)

@@ -12,11 +12,11 @@ from numpy.typing import NDArray
 from specflow.conditions.match import Matching
 from specflow.conditions.points import Points
 from specflow.limits import LimitContext, evaluate_limit
+from specflow.limits.conversion import difference_unit
 from specflow.limits.tree import tree_names
 from specflow.model.limit import Limit
 from specflow.model.requirement import Activity, Requirement
 from specflow.model.verdict import Conflict, Mismatch, RecordRef, Standing
-from specflow.units import format_unit, parse_unit, tolerance_unit
 from specflow.verification.activity import ActivityOutcome, summarise
 from specflow.verification.alternatives import Member, members_of, put_together
 from specflow.verification.conflicts import conflicts
@@ -146,11 +146,6 @@ def _bench(requirement: Requirement, activity: Activity, ground: Ground, workspa
         requirement.decision_rule.conditional_pass_counts,
         ground.together,
     )
-
-
-def difference_unit(unit: str) -> str:
-    """Return the unit of margins of a limit in ``unit``."""
-    return format_unit(tolerance_unit(parse_unit(unit or "1")))
 
 
 def _standing(ground: Ground) -> Mapping[Standing, int]:

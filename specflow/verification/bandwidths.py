@@ -5,10 +5,10 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
+from specflow.limits.conversion import unit_of
 from specflow.limits.tree import walk_limit
 from specflow.model.evidence import SpectrumKind
 from specflow.model.limit import Limit, Mask, MeasuredIn
-from specflow.units import parse_unit
 from specflow.verification.records import Records, Source
 
 Floats = NDArray[np.float64]
@@ -16,7 +16,7 @@ Floats = NDArray[np.float64]
 
 def states_bandwidth(limit: Limit) -> bool:
     """Whether the limit itself says in which bandwidth it is measured (a density says so by its unit instead)."""
-    if limit.unit and parse_unit(limit.unit).bandwidth_hz is not None:
+    if limit.unit and unit_of(limit.unit).bandwidth_hz is not None:
         return False
     return any(
         isinstance(node, MeasuredIn)

@@ -15,11 +15,12 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.errors import UnitError
+from specflow.limits.conversion import unit_of
 from specflow.model.block import Block
 from specflow.model.evidence import EvidenceTable, SpectrumKind, ValueArrays, ValueColumn
 from specflow.model.parameter import Parameter, QuantityIdentity
 from specflow.model.verdict import Mismatch
-from specflow.units import Converter, Kind, Unit, converter, missing_between_planes, parse_unit
+from specflow.units import Converter, Kind, Unit, converter, missing_between_planes
 
 Floats = NDArray[np.float64]
 
@@ -110,7 +111,7 @@ def fit(
         if _plain(getattr(found, part)) != _plain(getattr(wanted, part)):
             return _differs(table, column, part, getattr(found, part), getattr(wanted, part))
     try:
-        source, target = parse_unit(column.unit or "1"), parse_unit(unit or "1")
+        source, target = unit_of(column.unit or "1"), unit_of(unit or "1")
         convert = _conversion(source, target, parameter)
     except UnitError as error:
         what = f"recorded in {column.unit or 'no unit'}, the limit is in {unit}: {error.message}"

@@ -14,10 +14,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.conditions.words import point_words
+from specflow.limits.conversion import unit_of
 from specflow.model.columns import UNSTATED
 from specflow.model.project import Policy
 from specflow.model.verdict import Conflict
-from specflow.units import parse_unit
 from specflow.verification.points import Bench
 from specflow.verification.standing import ACCEPTED
 
@@ -26,63 +26,68 @@ Floats = NDArray[np.float64]
 #: The most that are named for one requirement: by then nobody trusts its evidence.
 MOST_CONFLICTS = 20
 _CLOSE = 1e-6
+_HALF = 0.5**0.5
 
 
 def conflicts(bench: Bench, unit: str, tolerance_unit: str, policy: Policy) -> tuple[Conflict, ...]:
     """Return the conflicts among the readings of one activity, one a point and item: the pair that differs most."""
-    readings = bench.readings
-    if readings.size == len(np.unique(readings.point)):
-        return ()
     allowed = _expanded(bench, unit, policy)
-    keep = np.isfinite(readings.low) & (readings.low == readings.high)
-    keep &= bench.records.standing[readings.record] == ACCEPTED
-    found = (
-        _worst_pair(bench, group, allowed) for group in _suspicious(bench, allowed, np.flatnonzero(keep))
-    )
+    found = (_worst_pair(bench, group, allowed) for group in _suspicious(bench, allowed))
     worst = islice((pair for pair in found if pair is not None), MOST_CONFLICTS)
     return tuple(_conflict(bench, first, second, allowed, tolerance_unit) for first, second in worst)
 
 
 def _expanded(bench: Bench, unit: str, policy: Policy) -> Floats:
-    u = bench.readings.u
-    if parse_unit(unit or "1").is_log:
+    """Return U of every reading, the house's threshold where none is known."""
+    spread = 2 * bench.readings.u
+    unknown = spread != spread
+    if unknown.any():
+        low = bench.readings.low
         house: Floats | float = policy.marginal_db
-    else:
-        house = policy.marginal_relative * np.abs(
-            np.where(np.isfinite(bench.readings.low), bench.readings.low, 0.0)
-        )
-    return np.where(np.isnan(u), house, 2 * u)
+        if not unit_of(unit or "1").is_log:
+            house = policy.marginal_relative * np.abs(np.where(np.isfinite(low), low, 0.0))
+        return np.where(unknown, house, spread)
+    return spread
 
 
-def _suspicious(bench: Bench, allowed: Floats, keep: NDArray[np.intp]) -> Iterator[NDArray[np.intp]]:
-    """Yield groups (item, point, rank, value along the range) whose extremes may differ too much.
+def _suspicious(bench: Bench, allowed: Floats) -> Iterator[NDArray[np.intp]]:
+    """Yield groups (item, point, value along the range) whose extremes may differ too much.
 
     √(U1² + U2²) is at least (U1 + U2)/√2, so intervals of U/√2 that all overlap hold no conflict.
     """
-    if len(keep) < 2:
-        return
     readings, records = bench.readings, bench.records
-    key = readings.point[keep].astype(np.int64) * len(records.items) + records.item[readings.record[keep]]
-    key = key * 8 + bench.credit.rank[keep]
-    along = _along(bench, keep)
-    order = np.lexsort((along, key))
-    key, along, rows = key[order], along[order], keep[order]
-    change = (key[1:] != key[:-1]) | ~np.isclose(along[1:], along[:-1], rtol=_CLOSE, atol=0)
-    starts = np.flatnonzero(np.concatenate([[True], change]))
-    half = allowed[rows] / np.sqrt(2)
-    low = np.minimum.reduceat(readings.low[rows] + half, starts)
-    high = np.maximum.reduceat(readings.low[rows] - half, starts)
-    stops = np.append(starts[1:], len(rows))
-    for place in np.flatnonzero(high > low):
-        yield rows[starts[place] : stops[place]]
+    cell = records.item[readings.record].astype(np.intp) * bench.points.size + readings.point
+    cells = len(records.items) * bench.points.size
+    if bench.matching.along is not None:
+        cell, cells = _along_range(bench, cell)
+    half = allowed * _HALF
+    lowest, highest = np.full(cells, np.inf), np.full(cells, -np.inf)
+    np.minimum.at(lowest, cell, readings.low + half)
+    np.maximum.at(highest, cell, readings.high - half)
+    doubtful = highest > lowest
+    if not doubtful.any():
+        return
+    rows = np.flatnonzero(doubtful[cell] & (readings.low == readings.high))
+    rows = rows[records.standing[readings.record[rows]] == ACCEPTED]
+    rank = bench.credit.rank[rows].astype(np.intp)
+    rows = rows[np.argsort(cell[rows] * 8 + rank, kind="stable")]
+    key = cell[rows] * 8 + bench.credit.rank[rows]
+    yield from (group for group in np.split(rows, np.flatnonzero(np.diff(key)) + 1) if len(group) > 1)
 
 
-def _along(bench: Bench, keep: NDArray[np.intp]) -> Floats:
-    if bench.matching.along is None:
-        return np.zeros(len(keep))
+def _along_range(bench: Bench, cell: NDArray[np.intp]) -> tuple[NDArray[np.intp], int]:
+    """Return finer cells: readings of one cell at different values along the range do not contradict each other."""
     by_record = np.zeros(bench.records.size)
+    assert bench.matching.along is not None
     by_record[bench.matching.record] = bench.matching.along
-    return by_record[bench.readings.record[keep]]
+    along = by_record[bench.readings.record]
+    order = np.lexsort((along, cell))
+    change = (np.diff(cell[order]) != 0) | ~np.isclose(
+        along[order][1:], along[order][:-1], rtol=_CLOSE, atol=0
+    )
+    finer = np.empty(len(cell), np.intp)
+    finer[order] = np.concatenate([[0], np.cumsum(change)])[: len(order)]
+    return finer, len(cell)
 
 
 def _worst_pair(bench: Bench, group: NDArray[np.intp], allowed: Floats) -> tuple[int, int] | None:
@@ -92,7 +97,7 @@ def _worst_pair(bench: Bench, group: NDArray[np.intp], allowed: Floats) -> tuple
     records = bench.readings.record
     while True:
         first, second = divmod(int(beyond.argmax()), len(group))
-        if beyond[first, second] <= 0:
+        if not beyond[first, second] > 0:
             return None
         if _same_conditions(bench, int(records[group[first]]), int(records[group[second]])):
             return int(group[first]), int(group[second])

@@ -8,7 +8,7 @@ for every item; items never complete each other's points unless the requirement 
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TypeVar
 
 import numpy as np
@@ -27,6 +27,10 @@ T = TypeVar("T", bound=np.generic)
 Codes = NDArray[np.int8]
 Flags = NDArray[np.bool_]
 Rows = NDArray[np.intp]
+
+# Looking a member up in an enumeration costs as much as an array operation; these are used for every requirement.
+_PASS, _CONDITIONAL_PASS = int(Verdict.PASS), int(Verdict.CONDITIONAL_PASS)
+_NONE, _CONDITIONAL_FAIL = int(Verdict.NONE), int(Verdict.CONDITIONAL_FAIL)
 
 #: Name of the item that stands for all of them where they may complete each other.
 ALL_ITEMS = "all items"
@@ -76,24 +80,52 @@ class ItemPoints:
 
 def item_points(bench: Bench, *, together: bool) -> list[ItemPoints]:
     """Return the state of every point for each item that has evidence (for all as one item with ``together``)."""
+    if bench.readings.size == 0:
+        return [_without_evidence(bench)]
     names, pair, item = _by_item(bench, together or bench.together)
-    counts = _counting(bench, pair, item)
-    governing, group = _governing(bench, pair, item, counts)
-    found = []
-    for code, name in enumerate(names):
-        chosen = governing[group == code] if len(names) > 1 else governing
-        own = item == code if len(names) > 1 else np.ones(len(pair), bool)
-        found.append(_one_item(bench, name, pair[chosen], counts[chosen], pair[own]))
-    return found
+    found = _Grid(bench, pair, item, len(names))
+    counts = _counting(found)
+    governing = _governing(found, counts)
+    return _items(found, names, counts, governing)
 
 
-def _by_item(bench: Bench, together: bool) -> tuple[Sequence[str], Rows, NDArray[np.int32]]:
+@dataclass(frozen=True, slots=True)
+class _Grid:
+    """Readings laid out over items × points: reading ``pair[i]`` is evidence of item ``item[i]``."""
+
+    bench: Bench
+    pair: Rows
+    item: Rows
+    items: int
+
+    @property
+    def cell(self) -> Rows:
+        """The cell of each reading, points fastest."""
+        return self.item * self.bench.points.size + self.bench.readings.point[self.pair]
+
+    @property
+    def cells(self) -> int:
+        """How many cells there are."""
+        return self.items * self.bench.points.size
+
+
+def _without_evidence(bench: Bench) -> ItemPoints:
+    nobody = absent("", bench.points.size)
+    if bench.nothing_required is None:
+        return nobody
+    free = bench.nothing_required
+    verdict = np.where(free, np.int8(Verdict.NOT_TRIGGERED), nobody.effective)
+    results = replace(nobody.results, verdict=verdict, proved=free)
+    return replace(nobody, results=results, effective=verdict, counts=free)
+
+
+def _by_item(bench: Bench, together: bool) -> tuple[Sequence[str], Rows, Rows]:
     """Return item names, and for every (pair, item) the pair and the code of the item it is evidence of."""
     pair = np.arange(bench.readings.size)
     if together:
-        return (ALL_ITEMS,), pair, np.zeros(len(pair), np.int32)
+        return (ALL_ITEMS,), pair, np.zeros(len(pair), np.intp)
     names = bench.records.items
-    item = bench.records.item[bench.readings.record]
+    item = bench.records.item[bench.readings.record].astype(np.intp)
     if len(names) == 1:
         return names, pair, item
     if "" in names and any(is_of_design(source) for source in bench.records.sources):
@@ -101,21 +133,17 @@ def _by_item(bench: Bench, together: bool) -> tuple[Sequence[str], Rows, NDArray
     return _present(names, pair, item)
 
 
-def _present(
-    names: Sequence[str], pair: Rows, item: NDArray[np.int32]
-) -> tuple[Sequence[str], Rows, NDArray[np.int32]]:
-    """Keep the items that have evidence at a required point (one item at least), in their order."""
-    seen = np.unique(item)
+def _present(names: Sequence[str], pair: Rows, item: Rows) -> tuple[Sequence[str], Rows, Rows]:
+    """Keep the items that have evidence at a required point, in their order."""
+    seen = np.flatnonzero(np.bincount(item, minlength=len(names)))
     if len(seen) == len(names):
         return names, pair, item
-    if len(seen) == 0:
-        return ("",), pair, item
-    return [names[code] for code in seen], pair, np.searchsorted(seen, item).astype(np.int32)
+    return [names[code] for code in seen.tolist()], pair, np.searchsorted(seen, item)
 
 
 def _with_design(
-    bench: Bench, names: Sequence[str], pair: Rows, item: NDArray[np.int32]
-) -> tuple[Sequence[str], Rows, NDArray[np.int32]]:
+    bench: Bench, names: Sequence[str], pair: Rows, item: Rows
+) -> tuple[Sequence[str], Rows, Rows]:
     """Give evidence about the design to every item that has evidence of its own."""
     of_design = np.array([is_of_design(source) for source in bench.records.sources])
     common = of_design[bench.records.source[bench.readings.record]] & (item == list(names).index(""))
@@ -125,129 +153,141 @@ def _with_design(
     pairs, items = [pair[~common]], [item[~common]]
     for code in own:
         pairs.append(pair[common])
-        items.append(np.full(int(common.sum()), code, np.int32))
+        items.append(np.full(int(common.sum()), code, np.intp))
     return _present(names, np.concatenate(pairs), np.concatenate(items))
 
 
-def _counting(bench: Bench, pair: Rows, item: NDArray[np.int32]) -> Flags:
+def _counting(grid: _Grid) -> Flags:
     """Return which readings weigh: those with credit, and fails without it unless they were re-verified.
 
     A stale fail is lifted by a reading with credit, of the same or a higher rank, of the same item at the point.
     """
-    verdict = bench.readings.verdict[pair]
-    credit = bench.credit.counts[pair]
-    failing = (verdict == Verdict.FAIL) | (verdict == Verdict.CONDITIONAL_FAIL)
-    counts = (credit & (verdict != Verdict.NONE)) | failing
-    lifted = failing & ~credit & bench.credit.stale[pair]
+    weights, pair = grid.bench.credit, grid.pair
+    verdict, credit = grid.bench.readings.verdict[pair], weights.counts[pair]
+    failing = verdict >= _CONDITIONAL_FAIL
+    counts = np.asarray((credit & (verdict != _NONE)) | failing)
+    lifted = failing & ~credit & weights.stale[pair]
     if lifted.any():
-        key = item.astype(np.int64) * bench.points.size + bench.readings.point[pair]
-        best = np.full(int(key.max()) + 1, -1, np.int8)
-        np.maximum.at(best, key[credit], bench.credit.rank[pair][credit])
-        counts &= ~(lifted & (bench.credit.rank[pair] <= best[key]))
-    return np.asarray(counts)
+        best = np.full(grid.cells, -1, np.int8)
+        np.maximum.at(best, grid.cell[credit], weights.rank[pair][credit])
+        counts &= ~(lifted & (weights.rank[pair] <= best[grid.cell]))
+    return counts
 
 
-def _governing(
-    bench: Bench, pair: Rows, item: NDArray[np.int32], counts: Flags
-) -> tuple[Rows, NDArray[np.int32]]:
-    """Return the governing reading of each item at each of its points (places in ``pair``), and its item."""
-    point = bench.readings.point[pair].astype(np.int64)
-    place = (item.astype(np.int64) * bench.points.size + point) << 9
-    order_key = (
-        place
-        | ((~counts).astype(np.int64) << 8)
-        | ((7 - bench.credit.rank[pair].astype(np.int64)) << 4)
-        | (15 - bench.readings.verdict[pair].astype(np.int64))
-    )
-    margin = bench.readings.guarded[pair]
-    order = np.lexsort((margin, order_key))
-    group = place[order]
-    first = np.empty(len(order), bool)
-    first[:1] = True
-    np.not_equal(group[1:], group[:-1], out=first[1:])
-    governing = order[first]
-    return governing, item[governing]
+def _governing(grid: _Grid, counts: Flags) -> Rows:
+    """Return for each cell the place (in ``pair``) of the governing reading, -1 where there is none."""
+    cell, readings = grid.cell, grid.bench.readings
+    weight = counts.astype(np.int16) << 8
+    weight |= grid.bench.credit.rank[grid.pair].astype(np.int16) << 4
+    weight |= readings.verdict[grid.pair]
+    heaviest = np.full(grid.cells, -1, np.int16)
+    np.maximum.at(heaviest, cell, weight)
+    margin = readings.guarded[grid.pair]
+    margin = np.where((weight == heaviest[cell]) & (margin == margin), margin, np.inf)
+    least = np.full(grid.cells, np.inf)
+    np.minimum.at(least, cell, margin)
+    chosen = np.flatnonzero((weight == heaviest[cell]) & (margin == least[cell]))[::-1]
+    governing = np.full(grid.cells, -1, np.intp)
+    governing[cell[chosen]] = chosen  # of equals the first stays, because it is written last
+    return governing
 
 
-def _one_item(bench: Bench, name: str, pair: Rows, counts: Flags, own: Rows) -> ItemPoints:
-    """Spread the governing readings of one item over all points."""
-    n = bench.points.size
-    readings = bench.readings
-    point = readings.point[pair]
-    verdict = _filled(n, np.int8(Verdict.NONE), point, readings.verdict[pair])
-    counted = _filled(n, np.bool_(False), point, counts)
-    good = _passing(verdict, bench.conditional_pass_counts) & counted
-    good &= _proved(bench, own)
-    if bench.nothing_required is not None:
-        free = bench.nothing_required & ~_marked(n, point)
-        verdict[free], counted[free], good[free] = Verdict.NOT_TRIGGERED, True, True
-    effective = np.where(counted, verdict, np.int8(Verdict.NONE))
-    effective[_passing(effective, True) & ~good] = Verdict.NONE
-    stale = _marked(n, readings.point[own[bench.credit.stale[own]]])
-    results = _results(bench, name, pair, point, verdict, good)
-    rank = _filled(n, np.int8(-1), point, bench.credit.rank[pair])
-    marginal = _filled(n, np.bool_(False), point, readings.marginal[pair] & counts)
-    tables = [source.table for source in bench.records.sources]
-    return ItemPoints(name, results, tables, effective, counted, rank, stale, marginal)
+def _items(grid: _Grid, names: Sequence[str], counts: Flags, governing: Rows) -> list[ItemPoints]:
+    """Spread the governing readings over all cells, and cut the grid into items."""
+    bench, readings, records = grid.bench, grid.bench.readings, grid.bench.records
+    shape = grid.items, bench.points.size
+    empty = None if (governing >= 0).all() else governing < 0
+    pair = grid.pair[governing]
+    record = readings.record[pair]
+
+    def spread(values: NDArray[T], rest: float) -> NDArray[T]:
+        if empty is not None:
+            values[empty] = rest
+        return values.reshape(shape)
+
+    verdict = spread(readings.verdict[pair], _NONE)
+    counted = spread(counts[governing], False)
+    proved = _passing(verdict, bench.conditional_pass_counts) & counted & _proved(grid)
+    if bench.nothing_required is not None and empty is not None:
+        free = bench.nothing_required & empty.reshape(shape)
+        verdict[free], counted[free], proved[free] = Verdict.NOT_TRIGGERED, True, True
+    effective = np.where(counted, verdict, np.int8(_NONE))
+    effective[_passing(effective, True) & ~proved] = _NONE
+    low = spread(readings.low[pair], np.nan)
+    high = low if readings.high is readings.low else spread(readings.high[pair], np.nan)
+    margin, guarded = spread(readings.margin[pair], np.nan), spread(readings.guarded[pair], np.nan)
+    u = spread(readings.u[pair], np.nan)
+    lower, upper = spread(readings.lower[pair], np.nan), spread(readings.upper[pair], np.nan)
+    source = spread(records.source[record], -1)
+    column = spread(np.array([one.place for one in records.sources], np.int32)[records.source[record]], -1)
+    row = spread(records.row[record], -1)
+    rank = spread(bench.credit.rank[pair], -1)
+    marginal = spread(readings.marginal[pair], False) & counted
+    stale = _stale(grid).reshape(shape)
+    tables = tuple(one.table for one in records.sources)
+    ids = tuple(table.id for table in tables)
+    return [
+        ItemPoints(
+            name,
+            PointResults(
+                name, verdict[i], proved[i], margin[i], guarded[i], low[i], high[i], u[i], lower[i], upper[i],
+                source[i], column[i], row[i], ids,
+            ),
+            tables,
+            effective[i],
+            counted[i],
+            rank[i],
+            stale[i],
+            marginal[i],
+        )
+        for i, name in enumerate(names)
+    ]  # fmt: skip
 
 
-def _proved(bench: Bench, own: Rows) -> Flags:
-    """Ask the one place that decides whether readings with credit that pass prove each point."""
-    good = np.zeros(bench.records.size, bool)
-    passing = _passing(bench.readings.verdict[own], bench.conditional_pass_counts) & bench.credit.counts[own]
-    good[bench.readings.record[own[passing]]] = True
-    return proves(bench.points, bench.matching, good)
+def _stale(grid: _Grid) -> Flags:
+    stale = np.zeros(grid.cells, bool)
+    if grid.bench.credit.stale.any():
+        stale[grid.cell[grid.bench.credit.stale[grid.pair]]] = True
+    return stale
+
+
+def _proved(grid: _Grid) -> Flags:
+    """Ask the one place that decides, item by item, whether readings with credit that pass prove each point."""
+    bench = grid.bench
+    passing = _passing(bench.readings.verdict, bench.conditional_pass_counts) & bench.credit.counts
+    record = bench.readings.record[grid.pair]
+    passing = passing[grid.pair]
+    rows = []
+    for code in range(grid.items):
+        good = np.zeros(bench.records.size, bool)
+        good[record[passing if grid.items == 1 else passing & (grid.item == code)]] = True
+        rows.append(proves(bench.points, bench.matching, good))
+    return rows[0][None, :] if len(rows) == 1 else np.stack(rows)
 
 
 def _passing(verdict: Codes, conditional: bool) -> Flags:
     """Return where a verdict may prove its point: pass, not triggered, and a conditional pass where it counts."""
-    return np.asarray(verdict <= (Verdict.CONDITIONAL_PASS if conditional else Verdict.PASS))
+    return np.asarray(verdict <= (_CONDITIONAL_PASS if conditional else _PASS))
 
 
-def _filled(n: int, rest: T, point: NDArray[np.int32], values: NDArray[T]) -> NDArray[T]:
-    array = np.full(n, rest)
-    array[point] = values
-    return array
-
-
-def _marked(n: int, point: NDArray[np.int32]) -> Flags:
-    marked = np.zeros(n, bool)
-    marked[point] = True
-    return marked
-
-
-def _results(
-    bench: Bench, name: str, pair: Rows, point: NDArray[np.int32], verdict: Codes, proved: Flags
-) -> PointResults:
-    n, readings, records = bench.points.size, bench.readings, bench.records
-    record = readings.record[pair]
-    source = records.source[record]
-
-    def numbers(values: NDArray[np.float64]) -> NDArray[np.float64]:
-        array = np.full(n, np.nan)
-        array[point] = values[pair]
-        return array
-
-    def places(values: NDArray[np.int32]) -> NDArray[np.int32]:
-        array = np.full(n, -1, np.int32)
-        array[point] = values
-        return array
-
-    columns: NDArray[np.int32] = np.array([one.place for one in records.sources], np.int32)
-    low = numbers(readings.low)
-    return PointResults(
-        name,
+def absent(item: str, n: int) -> ItemPoints:
+    """Return an item without any evidence at any of n points."""
+    nothing, none = np.full(n, np.nan), np.full(n, -1, np.int32)
+    verdict, false = np.full(n, _NONE, np.int8), np.zeros(n, bool)
+    results = PointResults(
+        item,
         verdict,
-        proved,
-        numbers(readings.margin),
-        numbers(readings.guarded),
-        low,
-        low if readings.high is readings.low else numbers(readings.high),
-        numbers(readings.u),
-        numbers(readings.lower),
-        numbers(readings.upper),
-        places(source),
-        places(columns[source] if len(columns) else source),
-        places(records.row[record]),
-        tuple(one.table.id for one in records.sources),
+        false,
+        nothing,
+        nothing,
+        nothing,
+        nothing,
+        nothing,
+        nothing,
+        nothing,
+        none,
+        none,
+        none,
+        (),
     )
+    return ItemPoints(item, results, (), verdict, false, np.full(n, -1, np.int8), false, false)

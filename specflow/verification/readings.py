@@ -14,6 +14,7 @@ from numpy.typing import NDArray
 from specflow.conditions.match import Matching
 from specflow.conditions.points import Points
 from specflow.limits.bounds import Bounds, LimitContext
+from specflow.limits.conversion import unit_of
 from specflow.limits.evaluation import evaluate_limit
 from specflow.limits.tree import tree_names
 from specflow.model.columns import Columns, TextColumn
@@ -99,7 +100,7 @@ class Judgement:
     @property
     def parsed_unit(self) -> Unit:
         """The unit of the limit."""
-        return parse_unit(self.unit or "1")
+        return unit_of(self.unit or "1")
 
 
 def serving(records: Records, matching: Matching) -> tuple[Rows, Rows]:
@@ -269,7 +270,7 @@ def _test_tolerance(limit: Limit, unit: str) -> float:
     amount = tolerance.amount
     if not amount.unit:
         return amount.value
-    difference = tolerance_unit(parse_unit(unit or "1"))
+    difference = tolerance_unit(unit_of(unit or "1"))
     return converter(parse_unit(amount.unit), difference, difference=True)(amount.value)
 
 
