@@ -80,9 +80,10 @@ def test_forty_rows_with_twelve_mistakes_give_twelve_findings(tmp_path: Path) ->
     assert sum(isinstance(one, Requirement) for one in draft.documents) == 28
 
 
-def test_two_mistakes_in_one_row_are_both_found(tmp_path: Path) -> None:
-    draft = one_row(tmp_path, Parameter="eirpp", Limit=">= 45 dBmm", Block="UTX")
-    assert [one.origin.cell for one in rejected(draft) if one.origin] == ["B2", "C2", "D2"]
+def test_all_mistakes_of_one_row_are_found(tmp_path: Path) -> None:
+    others = {"Owner": "#REF!", "Test tolerance": "some", "Method": "tst"}
+    draft = one_row(tmp_path, Parameter="eirpp", Limit=">= 45 dBmm", Block="UTX", **others)
+    assert [one.origin.cell for one in rejected(draft) if one.origin] == ["B2", "C2", "D2", "E2", "F2", "G2"]
 
 
 @pytest.mark.parametrize(

@@ -118,16 +118,17 @@ def _items(row: SheetRow, intake: Intake, text: str) -> tuple[str, ...]:
     return known_items(row, "proved_by", names, intake)
 
 
-def with_test_tolerance(row: SheetRow, limit: Limit) -> Limit:
-    """Return the limit with the test tolerance of its own column: "0.7 dB", "0.5 dB on the stimulus"."""
+def stated_tolerance(row: SheetRow) -> TestTolerance | None:
+    """Read the test tolerance in its own column: "0.7 dB", "0.5 dB on the stimulus"."""
     text = row.text("test_tolerance")
-    if not text:
-        return limit
     amount = _STIMULUS.sub("", text)
-    found = row.attempt("test_tolerance", lambda: (parse_quantity(amount), split_quantity(amount)))
+    found = (
+        row.attempt("test_tolerance", lambda: (parse_quantity(amount), split_quantity(amount)))
+        if text
+        else None
+    )
     if found is None:
-        return limit
+        return None
     quantity, (_, unit) = found
-    place = "limit" if amount == text else "stimulus"
     number = Number(text=repr(float(quantity.value)), unit=unit)
-    return limit.model_copy(update={"test_tolerance": TestTolerance(amount=number, place=place)})
+    return TestTolerance(amount=number, place="limit" if amount == text else "stimulus")

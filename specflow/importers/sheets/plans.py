@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import dataclass
 
 from specflow.importers.sheets.intake import Intake
 from specflow.importers.sheets.row import SheetRow
@@ -11,27 +12,38 @@ from specflow.model.block import HardwareType
 from specflow.model.requirement import Activity, Method, Requirement, Stage
 
 
-def plan_in_row(row: SheetRow, requirement: Requirement, intake: Intake) -> bool:
-    """Note the activities that the columns Method, Stage and Hardware of a requirement plan: one a method.
+@dataclass(frozen=True, slots=True)
+class StatedPlan:
+    """What the columns Method, Stage and Hardware of a requirement say."""
 
-    Returns whether these columns could be read.
-    """
-    methods = [found for word in row.words("method") if (found := row.choose("method", word, Method))]
-    stage = row.choice("stage", Stage, Stage.QUALIFICATION)
-    hardware = row.choice("hardware", HardwareType, HardwareType.ENGINEERING)
+    methods: tuple[Method, ...]
+    stage: Stage
+    hardware: HardwareType
+
+
+def stated_plan(row: SheetRow) -> StatedPlan:
+    """Read the shorthand columns of a requirement."""
+    return StatedPlan(
+        tuple(found for word in row.words("method") if (found := row.choose("method", word, Method))),
+        row.choice("stage", Stage, Stage.QUALIFICATION),
+        row.choice("hardware", HardwareType, HardwareType.ENGINEERING),
+    )
+
+
+def note_plan(plan: StatedPlan, requirement: Requirement, row: SheetRow, intake: Intake) -> None:
+    """Note the activities that a plan makes: one a method."""
     intake.shorthand[code_key(requirement.id)] = [
         Activity(
             id=f"{requirement.id}/A{number}",
             requirement=requirement.id,
             method=method,
-            stage=stage,
+            stage=plan.stage,
             tier=requirement.tier,
-            credit_from=hardware,
+            credit_from=plan.hardware,
             origin=row.origin("method"),
         )
-        for number, method in enumerate(methods, start=1)
+        for number, method in enumerate(plan.methods, start=1)
     ]
-    return row.sound
 
 
 def complete_plans(intake: Intake) -> None:

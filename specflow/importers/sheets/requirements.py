@@ -5,11 +5,11 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 from specflow.errors import UnitError
-from specflow.importers.sheets.decision_rules import decision_rule, provers, with_test_tolerance
+from specflow.importers.sheets.decision_rules import decision_rule, provers, stated_tolerance
 from specflow.importers.sheets.intake import Intake
 from specflow.importers.sheets.limit_cells import check_inputs, limit_cell
 from specflow.importers.sheets.parameters import known_parameter
-from specflow.importers.sheets.plans import plan_in_row
+from specflow.importers.sheets.plans import note_plan, stated_plan
 from specflow.importers.sheets.requirement_columns import LAYOUT
 from specflow.importers.sheets.row import SheetRow
 from specflow.importers.sheets.sheet import Sheet
@@ -18,7 +18,7 @@ from specflow.limits import limit_words, parse_condition
 from specflow.model.base import MAX_CODE_LENGTH, code_key
 from specflow.model.block import Block, Tier
 from specflow.model.conditions import ConditionsSet
-from specflow.model.limit import Limit, LimitState, MeasuredIn
+from specflow.model.limit import Limit, LimitState, MeasuredIn, TestTolerance
 from specflow.model.parameter import Parameter, QuantityIdentity
 from specflow.model.requirement import Obligation, OpenValue, Requirement, Source
 from specflow.parameters import Candidate
@@ -33,10 +33,12 @@ _SIZES = (("GHz", 1e9), ("MHz", 1e6), ("kHz", 1e3), ("Hz", 1.0))
 def read(rows: Sequence[SheetRow], intake: Intake) -> None:
     """Add one requirement a row, with the activities its shorthand columns plan."""
     for row in rows:
+        plan = stated_plan(row)
         requirement = _requirement(row, intake)
-        if requirement is None or not plan_in_row(row, requirement, intake):
+        if requirement is None:
             continue
         intake.add(requirement, _stated(row, requirement))
+        note_plan(plan, requirement, row, intake)
         parameter = intake.dictionary.get(requirement.quantity.parameter)
         words = limit_words(requirement.limit, parameter)
         intake.echo(requirement.id, words)
@@ -62,7 +64,8 @@ def _requirement(row: SheetRow, intake: Intake) -> Requirement | None:
     parents, reason = _parents(row, intake)
     conditions = _conditions(row, intake)
     rule, who = decision_rule(row, limit, parameter), provers(row, intake)
-    standing = _standing(row, limit, block)
+    tolerance = stated_tolerance(row)
+    plain = _standing(row, limit, block) | _said(row)
     if limit is None or quantity is None:
         return None
     check_inputs(row, intake, limit, conditions)
@@ -72,15 +75,14 @@ def _requirement(row: SheetRow, intake: Intake) -> Requirement | None:
         title=row.prose("title") or (parameter.title if parameter else ""),
         block=code,
         quantity=quantity,
-        limit=_with_known_tolerance(row, with_test_tolerance(row, limit), intake),
+        limit=_with_tolerance(row, limit, tolerance, intake),
         parents=parents,
         derived_reason=reason,
         conditions=conditions,
         decision_rule=rule,
         provers=who,
         origin=row.origin(_limit_column(row)),
-        **standing,
-        **_said(row),
+        **plain,
     )
 
 
@@ -155,12 +157,14 @@ def _one_sided(sign: str, text: str) -> str:
     return text if text.upper().startswith("TBD") or text.startswith(sign) else f"{sign} {text}"
 
 
-def _with_known_tolerance(row: SheetRow, limit: Limit, intake: Intake) -> Limit:
-    """In a sheet without a column for it, the test tolerance stays as the project has it."""
+def _with_tolerance(row: SheetRow, limit: Limit, tolerance: TestTolerance | None, intake: Intake) -> Limit:
+    """The limit with the test tolerance of its own column; without such a column it stays as the project has it."""
     known = intake.snapshot.find(Requirement, row.subject)
-    if known is None or row.has("test_tolerance") or limit.test_tolerance is not None:
+    if known is not None and not row.has("test_tolerance"):
+        tolerance = known.limit.test_tolerance
+    if tolerance is None or (limit.test_tolerance is not None and not row.has("test_tolerance")):
         return limit
-    return limit.model_copy(update={"test_tolerance": known.limit.test_tolerance})
+    return limit.model_copy(update={"test_tolerance": tolerance})
 
 
 def _block_code(row: SheetRow, intake: Intake) -> str | None:
