@@ -34,7 +34,7 @@ _LIMIT_WORDS = frozenset(
 )
 _MARGIN_WORDS = frozenset(["margin", "headroom"])
 _UNCERTAINTY = re.compile(
-    r"^(?:(?P<of>.*?)[\s_]*)(?:\b(?P<letter>[Uu])|(?P<sign>±|\+/-)|\b(?P<word>(?:expanded |standard |meas\w*\.? )?unc(?:ert(?:ainty|\.)?|\.)?|"
+    r"^(?:(?P<of>.*?)[\s_]*)(?:\b(?P<letter>[Uu])(?![a-z])|(?P<sign>±|\+/-)|\b(?P<word>(?:expanded |standard |meas\w*\.? )?unc(?:ert(?:ainty|\.)?|\.)?|"
     r"std\.? unc\w*|mu))\s*(?P<rest>(?:\(.*\))?\s*(?:of|for)?\s*(?P<of_after>.*))$",
     re.IGNORECASE,
 )
