@@ -92,7 +92,7 @@ SYSTEM = [
         "EIRP never above its declaration",
         "UT",
         "eirp",
-        "<= P_rated[dBm] + 2 dB",
+        "<= P_rated[dBm] + 2.5 dB",
         SCAN,
         plane="array face",
         needs_allocation=_ALONE,
