@@ -9,6 +9,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -22,6 +23,11 @@ from specflow.verification.points import ItemPoints
 
 Codes = NDArray[np.int8]
 Flags = NDArray[np.bool_]
+
+
+_VERDICTS = len(Verdict)
+_FAILING = int(Verdict.CONDITIONAL_FAIL)
+_NOTHING = np.int8(-1)
 
 
 @dataclass(frozen=True, slots=True)
@@ -52,77 +58,81 @@ def summarise(
     """Roll the points of all items up to one activity. ``named`` are the ids of the items that must prove it."""
     chosen, missing_items = _provers(provers, items, named)
     needed = max(len(chosen) + missing_items, 1)
-    k = sum(one.results.k for one in chosen)
-    failing = [(one, _open_fails(one, items, one in chosen)) for one in items]
+    counts = [np.bincount(one.effective, minlength=_VERDICTS).tolist() for one in chosen]
+    failing = [
+        (one, _open_fails(one, items, one in chosen)) for one in items if one.effective.max() >= _FAILING
+    ]
     failing = [(one, flags) for one, flags in failing if flags.any()]
-    verdicts = _verdicts(chosen, failing, missing_items)
-    n_failing = _count_failing(provers, failing)
-    n_missing = sum(int(np.count_nonzero(one.effective == Verdict.NONE)) for one in chosen)
-    shown = max(chosen, key=_most_proved, default=None)
+    verdicts = _verdicts(counts, failing, missing_items)
+    k = sum(one.results.k for one in chosen)
+    governing = _governing(points, chosen, failing, unit)
     result = ActivityResult(
         activity.id,
         _state(activity, k, points.size * needed, items),
         max(verdicts),
         k,
         points.size * needed,
-        n_failing,
-        n_missing + points.size * missing_items,
-        shown.item if shown else "",
+        _count_failing(provers, failing),
+        sum(one[Verdict.NONE] for one in counts) + points.size * missing_items,
+        chosen[0].item if chosen else "",
         {one.item: one.results for one in items},
-        _governing(points, chosen, failing, unit),
-        _smallest(points, chosen, failing, unit),
-        any(bool((one.marginal & one.counts).any()) for one in chosen),
+        governing,
+        _smallest(points, chosen, failing, unit, governing),
+        any(bool(one.marginal.any()) for one in chosen),
         tuple(why),
     )
     counted = any(bool(one.counts.any()) for one in items)
-    stale = any(bool((one.stale & ~one.proved & (one.effective == Verdict.NONE)).any()) for one in chosen)
-    return ActivityOutcome(result, chosen, failing, verdicts, counted, stale)
+    return ActivityOutcome(
+        result, chosen, failing, verdicts, counted, any(map(_needs_re_verification, chosen))
+    )
+
+
+def _needs_re_verification(one: ItemPoints) -> bool:
+    """Whether stale evidence stands at a point that nothing proves."""
+    return bool(one.stale.any()) and bool((one.stale & (one.effective == Verdict.NONE)).any())
 
 
 def _provers(
     provers: Provers, items: Sequence[ItemPoints], named: Sequence[str]
 ) -> tuple[list[ItemPoints], int]:
-    """Return the items that must prove the activity and have evidence, and how many are still without any."""
-    if provers.may_complete_each_other:
+    """Return the items that must prove the activity, most proved first, and how many are still without evidence."""
+    if provers.may_complete_each_other or (len(items) == 1 and provers.rule == "any one"):
         return list(items), 0
     wanted = {code_key(name) for name in named}
     able = [one for one in items if not wanted or code_key(one.item) in wanted]
     if provers.rule == "each of":
-        return able, max(len(wanted) - len(able), 0)
+        return sorted(able, key=_most_proved, reverse=True), max(len(wanted) - len(able), 0)
+    if provers.rule == "any one":
+        return [max(able or items, key=_most_proved)], 0
     ranked = sorted(able or items, key=_most_proved, reverse=True)
-    number = provers.number if provers.rule == "number of" else 1
-    return ranked[:number], max(number - len(ranked), 0) if provers.rule == "number of" else 0
+    return ranked[: provers.number], max(provers.number - len(ranked), 0)
 
 
-def _most_proved(one: ItemPoints) -> tuple[int, int, float, int]:
-    """Order items: most points proved, most that count, best margin; then as they came."""
-    guarded = one.results.guarded_margin
-    worst = float(np.nanmin(guarded)) if np.isfinite(guarded).any() else -np.inf
-    return one.results.k, int(np.count_nonzero(one.counts)), worst, int(np.count_nonzero(one.rank >= 0))
+def _most_proved(one: ItemPoints) -> tuple[int, int, float]:
+    """Order items: most points proved, most that count, best margin; of equals the first stays."""
+    least = float(np.fmin.reduce(one.results.guarded_margin))
+    return one.results.k, int(np.count_nonzero(one.counts)), least if least == least else -np.inf
 
 
 def _open_fails(one: ItemPoints, items: Sequence[ItemPoints], must_prove: bool) -> Flags:
     """Return the points at which a fail of this item counts: its own, or one of another item that nothing outranks."""
-    fails = (one.effective == Verdict.FAIL) | (one.effective == Verdict.CONDITIONAL_FAIL)
-    if must_prove or not fails.any():
-        return np.asarray(fails)
-    for other in items:
-        if other is not one:
-            fails = fails & ~(other.proved & (other.rank > one.rank))
+    fails = one.effective >= _FAILING
+    if not must_prove:
+        for other in items:
+            if other is not one:
+                fails = fails & ~(other.proved & (other.rank > one.rank))
     return np.asarray(fails)
 
 
 def _verdicts(
-    chosen: Sequence[ItemPoints], failing: Sequence[tuple[ItemPoints, Flags]], missing_items: int
+    counts: Sequence[Sequence[int]], failing: Sequence[tuple[ItemPoints, Flags]], missing_items: int
 ) -> frozenset[Verdict]:
-    codes: set[int] = set()
-    for one in chosen:
-        codes.update(np.flatnonzero(np.bincount(one.effective, minlength=1)).tolist())
+    codes = {code for one in counts for code, count in enumerate(one) if count}
     for one, flags in failing:
         codes.update(np.unique(one.effective[flags]).tolist())
     if missing_items or not codes:
         codes.add(Verdict.NONE)
-    return frozenset(Verdict(code) for code in codes)
+    return frozenset(map(Verdict, codes))
 
 
 def _count_failing(provers: Provers, failing: Sequence[tuple[ItemPoints, Flags]]) -> int:
@@ -148,55 +158,79 @@ def _governing(
     points: Points, chosen: Sequence[ItemPoints], failing: Sequence[tuple[ItemPoints, Flags]], unit: str
 ) -> GoverningPoint | None:
     """Return the worst verdict, then the smallest guarded margin; what counts first, else what shows progress."""
-    best: tuple[tuple[int, int, float], ItemPoints, int] | None = None
-    for one, among in _candidates(chosen, failing):
-        verdict = np.where(one.counts, one.effective, np.int8(-1))[among]
-        shown = one.results.verdict[among]
-        worst = np.lexsort((_sortable(one)[among], -shown, -verdict))[0]
-        place = int(among[worst])
-        key = int(verdict[worst]), int(shown[worst]), -float(_sortable(one)[place])
+    best: tuple[tuple[bool, int, float], ItemPoints, int] | None = None
+    for one, allowed in _candidates(chosen, failing):
+        verdict = np.where(allowed, one.effective, _NOTHING)
+        worst = int(verdict.max())
+        counts = worst >= 0
+        if not counts:
+            verdict = np.where(one.results.table >= 0, one.results.verdict, _NOTHING)
+            worst = int(verdict.max())
+        if worst < 0:
+            continue
+        margin = np.where(verdict == worst, _sortable(one), np.inf)
+        place = int(margin.argmin()) if np.isfinite(margin).any() else int((verdict == worst).argmax())
+        key = counts, worst, -float(margin[place])
         if best is None or key > best[0]:
             best = key, one, place
     return None if best is None else _point(points, best[1], best[2], unit)
 
 
 def _smallest(
-    points: Points, chosen: Sequence[ItemPoints], failing: Sequence[tuple[ItemPoints, Flags]], unit: str
+    points: Points,
+    chosen: Sequence[ItemPoints],
+    failing: Sequence[tuple[ItemPoints, Flags]],
+    unit: str,
+    governing: GoverningPoint | None,
 ) -> GoverningPoint | None:
     """Return the point of the smallest plain margin among readings that count."""
     best: tuple[float, ItemPoints, int] | None = None
-    for one, among in _candidates(chosen, failing):
-        margin = np.where(one.counts, one.results.margin, np.nan)[among]
-        if np.isnan(margin).all():
-            continue
-        place = int(np.nanargmin(margin))
-        if best is None or margin[place] < best[0]:
-            best = float(margin[place]), one, int(among[place])
-    return None if best is None else _point(points, best[1], best[2], unit)
+    for one, allowed in _candidates(chosen, failing):
+        plain = one.results.margin
+        margin = np.where(allowed & (plain == plain), plain, np.inf)
+        place = int(margin.argmin())
+        least = float(margin[place])
+        if least < np.inf and (best is None or least < best[0]):
+            best = least, one, place
+    if best is None:
+        return None
+    if governing is not None and (governing.item, governing.point) == (best[1].item, best[2]):
+        return governing
+    return _point(points, best[1], best[2], unit)
 
 
 def _candidates(
     chosen: Sequence[ItemPoints], failing: Sequence[tuple[ItemPoints, Flags]]
-) -> list[tuple[ItemPoints, NDArray[np.intp]]]:
-    """Return the items and the points of theirs that may govern: all with a reading, and fails of other items."""
-    found = [(one, np.flatnonzero(one.results.table >= 0)) for one in chosen]
-    known = {id(one) for one in chosen}
-    found += [(one, np.flatnonzero(flags)) for one, flags in failing if id(one) not in known]
-    return [(one, among) for one, among in found if len(among)]
+) -> list[tuple[ItemPoints, Flags]]:
+    """Return the items and the points of theirs that may govern: all that count, and open fails of other items."""
+    found = [(one, one.counts) for one in chosen]
+    if failing:
+        known = {id(one) for one in chosen}
+        found += [(one, flags) for one, flags in failing if id(one) not in known]
+    return found
 
 
 def _sortable(one: ItemPoints) -> NDArray[np.float64]:
     """Return guarded margins, plain ones where no guarded margin is known; readings without any come last."""
-    guarded, plain = one.results.guarded_margin, one.results.margin
-    margin = np.where(np.isnan(guarded), plain, guarded)
-    return np.where(np.isnan(margin), np.inf, margin)
+    guarded = one.results.guarded_margin
+    unknown = guarded != guarded
+    if not unknown.any():
+        return guarded
+    margin = np.where(unknown, one.results.margin, guarded)
+    return np.where(margin == margin, margin, np.inf)
+
+
+@lru_cache(maxsize=4096)
+def _words(points: Points, place: int) -> str:
+    """Say a point once: many requirements share a conditions set."""
+    return point_words(points, place)
 
 
 def _point(points: Points, one: ItemPoints, place: int, unit: str) -> GoverningPoint:
     results = one.results
     return GoverningPoint(
         place,
-        point_words(points, place),
+        _words(points, place),
         Verdict(int(results.verdict[place])),
         float(results.margin[place]),
         float(results.guarded_margin[place]),

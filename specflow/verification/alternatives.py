@@ -22,6 +22,7 @@ from specflow.model.verdict import Verdict
 from specflow.parameters import Dictionary
 from specflow.verification.bandwidths import states_bandwidth
 from specflow.verification.comparable import Wanted
+from specflow.verification.limit_inputs import is_plain
 from specflow.verification.points import ItemPoints, absent
 
 Codes = NDArray[np.int8]
@@ -53,7 +54,7 @@ def members_of(requirement: Requirement, dictionary: Dictionary) -> tuple[Member
 
 
 def _own(requirement: Requirement, limit: Limit) -> Member:
-    by_limit = requirement.quantity.bandwidth_hz is None and states_bandwidth(limit)
+    by_limit = requirement.quantity.bandwidth_hz is None and not is_plain(limit) and states_bandwidth(limit)
     return Member(limit, Wanted(requirement.quantity, limit.unit, any_bandwidth=by_limit))
 
 

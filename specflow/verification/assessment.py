@@ -22,8 +22,9 @@ from specflow.verification.alternatives import Member, members_of, put_together
 from specflow.verification.conflicts import conflicts
 from specflow.verification.credit import credit
 from specflow.verification.judging import Judging
+from specflow.verification.limit_inputs import is_plain, limit_columns
 from specflow.verification.points import Bench, ItemPoints, item_points
-from specflow.verification.readings import Readings, limit_columns, readings_of, serving
+from specflow.verification.readings import Readings, readings_of, serving
 from specflow.verification.records import Records
 from specflow.verification.standing import STANDINGS
 from specflow.verification.unmatched import serving_nothing
@@ -125,7 +126,7 @@ def lay_ground(requirement: Requirement, member: Member, points: Points, workspa
 
 def _nothing_required(limit: Limit, points: Points, workspace: Workspace) -> NDArray[np.bool_] | None:
     """Return the points at which the limit asks for nothing, whatever is recorded; None where it always asks."""
-    if not tree_names(limit.tree) and limit.tree.kind != "no_limit":
+    if is_plain(limit) or (not tree_names(limit.tree) and limit.tree.kind != "no_limit"):
         return None
     every = np.arange(points.size, dtype=np.int32)
     columns = limit_columns(limit, points, None, every, every)

@@ -11,6 +11,7 @@ a later stage keeps its weight; one at an earlier stage counts like one on less 
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -65,35 +66,36 @@ def credit(
     activity: Activity, provers: Provers, records: Records, readings: Readings, workspace: Workspace
 ) -> Credit:
     """Return rank and credit of every pair for one activity."""
-    shape = len(records.sources), len(records.items)
-    rank, counts, stale = np.zeros(shape, np.int8), np.zeros(shape, bool), np.zeros(shape, bool)
+    kinds: list[tuple[int, bool, bool]] = []
     why: dict[str, None] = {}
     named = _named(provers, workspace)
-    for i, source in enumerate(records.sources):
+    for source in records.sources:
         reason = _no_credit(activity, source, workspace)
         outdated = _outdated(activity, source.table)
-        for j, item in enumerate(records.items):
+        for item in records.items:
             own = reason or _item_reason(activity, source, item, named, workspace)
-            rank[i, j] = _rank(activity, source, item, workspace)
-            counts[i, j] = not own and not outdated
-            stale[i, j] = bool(outdated)
+            kinds.append((_rank(activity, source, item, workspace), not own and not outdated, bool(outdated)))
             why.update(dict.fromkeys(text for text in (own, outdated) if text))
-    return _spread(records, readings, rank, counts, stale, tuple(why))
+    return _spread(records, readings, kinds, tuple(why))
 
 
 def _spread(
-    records: Records, readings: Readings, rank: Codes, counts: Flags, stale: Flags, why: tuple[str, ...]
+    records: Records, readings: Readings, kinds: Sequence[tuple[int, bool, bool]], why: tuple[str, ...]
 ) -> Credit:
+    """Give every pair what its source and item have; ``kinds`` holds rank, credit, staleness, items fastest."""
     size = readings.size
-    if rank.size == 1 and records.all_accepted:
-        one = rank[0, 0], counts[0, 0], stale[0, 0]
-        return Credit(np.full(size, one[0]), np.full(size, one[1]), np.full(size, one[2]), why)
-    source, item = records.source[readings.record], records.item[readings.record]
+    if records.all_accepted and len(set(kinds)) == 1:
+        rank, counts, stale = kinds[0]
+        return Credit(np.full(size, rank, np.int8), np.full(size, counts), np.full(size, stale), why)
+    kind = records.item[readings.record]
+    if len(records.sources) > 1:
+        kind = kind + records.source[readings.record] * len(records.items)
     standing = records.standing[readings.record]
+    ranks, counting, outdated = zip(*kinds, strict=True) if kinds else ((), (), ())
     return Credit(
-        rank[source, item],
-        counts[source, item] & (standing == ACCEPTED),
-        stale[source, item] | (standing == STALE),
+        np.array(ranks, np.int8)[kind],
+        np.array(counting, bool)[kind] & (standing == ACCEPTED),
+        np.array(outdated, bool)[kind] | (standing == STALE),
         (*why, *records.reasons),
     )
 

@@ -14,9 +14,10 @@ from specflow.model.columns import Columns
 from specflow.model.limit import Allowance, Allowed, Exceptions, Limit, Mask, Population
 from specflow.model.requirement import Requirement
 from specflow.model.verdict import Verdict
+from specflow.verification.limit_inputs import is_plain, limit_columns
 from specflow.verification.model_range import outside_validated_range
 from specflow.verification.populations import Statistic, condensed, forgiven, with_too_few
-from specflow.verification.readings import Judgement, Readings, Served, judge, limit_columns
+from specflow.verification.readings import Judgement, Readings, Served, judge
 from specflow.verification.records import Records
 from specflow.verification.workspace import Workspace
 
@@ -43,6 +44,8 @@ class Judging:
         return readings, together
 
     def _by_shape(self, served: Served) -> tuple[Readings, bool]:
+        if is_plain(self.limit):
+            return self._judged(self.limit, served), False
         tree = self.limit.tree
         if isinstance(tree, Population):
             return self._of_population(tree, served)

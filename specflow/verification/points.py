@@ -217,7 +217,10 @@ def _items(grid: _Grid, names: Sequence[str], counts: Flags, governing: Rows) ->
     high = low if readings.high is readings.low else spread(readings.high[pair], np.nan)
     margin, guarded = spread(readings.margin[pair], np.nan), spread(readings.guarded[pair], np.nan)
     u = spread(readings.u[pair], np.nan)
-    lower, upper = spread(readings.lower[pair], np.nan), spread(readings.upper[pair], np.nan)
+    lower, upper = (
+        np.broadcast_to(side, shape) if side.size == 1 else spread(side[pair], np.nan)
+        for side in (readings.lower, readings.upper)
+    )
     source = spread(records.source[record], -1)
     column = spread(np.array([one.place for one in records.sources], np.int32)[records.source[record]], -1)
     row = spread(records.row[record], -1)

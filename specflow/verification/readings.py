@@ -7,17 +7,15 @@ does not name (the axis of a mask, the actual frequency along a range) is taken 
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import reduce
 
 import numpy as np
 from numpy.typing import NDArray
 
 from specflow.conditions.match import Matching
-from specflow.conditions.points import Points
 from specflow.limits.bounds import Bounds, LimitContext
 from specflow.limits.conversion import unit_of
 from specflow.limits.evaluation import evaluate_limit
-from specflow.limits.tree import tree_names
-from specflow.model.columns import Columns, TextColumn
 from specflow.model.expression import Negative, Number
 from specflow.model.limit import Between, Bound, Limit
 from specflow.model.project import Policy
@@ -35,22 +33,24 @@ from specflow.statistics.decision import (
 from specflow.statistics.rounding import digit_of, rounded
 from specflow.units import Unit, closeness, converter, parse_unit, tolerance_unit
 from specflow.verification.bandwidths import in_bandwidth_of_limit
+from specflow.verification.limit_inputs import is_plain
 from specflow.verification.records import Records
 
 Array = NDArray[np.float64]
 Rows = NDArray[np.int32]
 Codes = NDArray[np.int8]
+_NO_BOUND = np.array([np.nan])
 
 
 @dataclass(frozen=True, slots=True)
 class Readings:
     """Pairs (p,): reading ``record[i]`` serves ``point[i]``; sorted by point.
 
-    ``low``, ``high`` as read and ``lower``, ``upper`` (the core limit, NaN where a side has no bound) are in the unit
-    of the limit; ``u``, ``margin`` and ``guarded`` in its tolerance unit, NaN where there is none. ``margin`` is the
-    distance to the core limit; ``guarded`` that to the acceptance limit (guard band, test tolerance, excess
-    uncertainty). ``marginal``: a pass or fail nearer to the limit than U, or than the threshold of the project without
-    one. ``why`` are sentences about what could not be decided.
+    ``low``, ``high`` as read and ``lower``, ``upper`` (the core limit, NaN where a side has no bound; one value where
+    it is the same everywhere) are in the unit of the limit; ``u``, ``margin`` and ``guarded`` in its tolerance unit, NaN
+    where there is none. ``margin`` is the distance to the core limit; ``guarded`` that to the acceptance limit (guard
+    band, test tolerance, excess uncertainty). ``marginal``: a pass or fail nearer to the limit than U, or than the
+    threshold of the project without one. ``why`` are sentences about what could not be decided.
     """
 
     record: Rows
@@ -111,33 +111,6 @@ def serving(records: Records, matching: Matching) -> tuple[Rows, Rows]:
     return matching.record[kept], matching.point[kept]
 
 
-def limit_columns(
-    limit: Limit, points: Points, records: Columns | None, record: Rows, point: Rows
-) -> Columns:
-    """Return the inputs of the limit for each pair: as the point requires, else as recorded."""
-    numeric: dict[str, Array] = {}
-    text: dict[str, TextColumn] = {}
-    units: dict[str, str] = {}
-    for name in tree_names(limit.tree):
-        columns, rows = (points.columns_lo, point) if _fixed(points, name) else (records, record)
-        if columns is None:
-            continue
-        if name in columns.numeric:
-            numeric[name] = columns.numeric[name][rows]
-            units[name] = columns.units.get(name, "")
-        elif name in columns.text:
-            text[name] = columns.text[name].take(rows.astype(np.intp))
-    return Columns(len(record), numeric, text, units)
-
-
-def _fixed(points: Points, name: str) -> bool:
-    """Whether each point requires one value of that dimension."""
-    low, high = points.columns_lo, points.columns_hi
-    if name in low.text:
-        return True
-    return name in low.numeric and (low is high or np.array_equal(low.numeric[name], high.numeric[name]))
-
-
 def readings_of(records: Records, record: Rows, point: Rows) -> Served:
     """Return the readings that serve points, as recorded."""
     low = records.low[record]
@@ -173,8 +146,8 @@ def judge(records: Records, served: Served, judgement: Judgement) -> Readings:
         low,
         high,
         u,
-        _side(bounds.lower, len(record)),
-        _side(bounds.upper, len(record)),
+        _NO_BOUND if bounds.lower is None else bounds.lower,
+        _NO_BOUND if bounds.upper is None else bounds.upper,
         verdict,
         margin,
         guarded,
@@ -200,27 +173,12 @@ def _core(bounds: Bounds, judgement: Judgement, exact: NDArray[np.bool_] | bool)
 def _as_written(judgement: Judgement) -> bool:
     """Whether the limit is compared as it was typed: plain numbers, nothing added or taken off."""
     limit, rule = judgement.limit, judgement.rule
-    if (
-        rule.name is not RuleName.SIMPLE
-        or rule.greatest_uncertainty
-        or limit.test_tolerance
-        or limit.rounding
-    ):
-        return False
-    match limit.tree:
-        case Bound(value=Number(unit="")) | Bound(value=Negative(operand=Number(unit=""))):
-            return True
-        case Between(lower=Number(unit=""), upper=Number(unit="")):
-            return True
-    return False
+    changed = rule.greatest_uncertainty or limit.test_tolerance or limit.rounding
+    return rule.name is RuleName.SIMPLE and not changed and is_plain(limit)
 
 
 def _flag(flags: NDArray[np.bool_]) -> NDArray[np.bool_] | bool:
     return bool(flags[0]) if flags.size == 1 else flags
-
-
-def _side(values: Array | None, size: int) -> Array:
-    return np.full(size, np.nan) if values is None else np.broadcast_to(values, (size,))
 
 
 def _compared(low: Array, high: Array, judgement: Judgement) -> tuple[Array, Array, list[str]]:
@@ -332,4 +290,4 @@ def _house_threshold(bounds: Bounds, judgement: Judgement, margin: Array) -> Flo
     ]
     if not sizes:
         return 0.0
-    return np.asarray(judgement.policy.marginal_relative * np.maximum.reduce(np.broadcast_arrays(*sizes)))
+    return np.asarray(judgement.policy.marginal_relative * reduce(np.maximum, sizes))

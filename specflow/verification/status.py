@@ -23,8 +23,8 @@ from specflow.verification.assessment import Assessment, assess
 from specflow.verification.closeout import close_out, label
 from specflow.verification.compliance import Facts, compliance
 from specflow.verification.decisions import Decisions
+from specflow.verification.limit_inputs import limit_columns
 from specflow.verification.points import ItemPoints
-from specflow.verification.readings import limit_columns
 from specflow.verification.waiving import NO_WAIVER, Waiving, waiving
 from specflow.verification.workspace import Workspace
 

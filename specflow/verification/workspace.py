@@ -217,7 +217,8 @@ class Workspace:
         return found
 
     def _standing(self, source: Source, columns: EvidenceColumns) -> RowStanding:
-        key = source.table.id, code_key(source.column.quantity.parameter)
+        changed = code_key(source.table.block) in self.register.changes
+        key = source.table.id, code_key(source.column.quantity.parameter) if changed else ""
         found = self._standings.get(key)
         if found is None:
             found = self.register.standing(
