@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 import subprocess
 import sys
 import sysconfig
@@ -78,3 +79,9 @@ def test_a_clean_installation_creates_opens_and_upgrades_a_project(python: Path,
     printed = run(str(python), "-I", "-c", USE, cwd=tmp_path)
     assert "upgraded from schema" in printed
     assert len(list(tmp_path.glob("made-schema*.specflow"))) == 1
+
+
+def test_a_clean_installation_builds_the_demo_from_its_own_examples(python: Path, tmp_path: Path) -> None:
+    printed = run(str(python), "-I", "-m", "specflow", "demo", "shown", cwd=tmp_path)
+    assert f"shown{os.sep}ferry-compliance.html" in printed
+    assert (tmp_path / "shown" / "ferry.specflow").is_file()

