@@ -33,3 +33,16 @@ class Finding(Document):
     remedy: str = ""
     origin: Origin | None = None
     related: tuple[str, ...] = ()
+
+
+class RuleDescription(Document):
+    """A rule as the catalogue shows it: what it reports, why it matters, one example of each kind, what to do."""
+
+    code: str
+    title: str
+    severity: Severity
+    noun: str
+    why: str
+    fails: str
+    passes: str
+    remedy: str

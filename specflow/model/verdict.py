@@ -134,6 +134,20 @@ class PointResults:
         """Return the number of points proved."""
         return int(np.count_nonzero(self.proved))
 
+    def points_with(self, *verdicts: Verdict) -> list[int]:
+        """Return the points whose governing verdict is one of these."""
+        return np.flatnonzero(np.isin(self.verdict, verdicts)).tolist()
+
+    @property
+    def unproved(self) -> list[int]:
+        """The points that are not proved and do not fail either."""
+        return np.flatnonzero(~self.proved & (self.verdict < Verdict.CONDITIONAL_FAIL)).tolist()
+
+    @property
+    def without_uncertainty(self) -> list[int]:
+        """The points whose governing reading has no known uncertainty."""
+        return np.flatnonzero((self.table >= 0) & np.isnan(self.u)).tolist()
+
 
 @dataclass(frozen=True, slots=True)
 class GoverningPoint:
@@ -173,7 +187,9 @@ class RequirementStatus:
     """The five axes of one requirement, its label and what governs it.
 
     ``unit`` is the unit of margins (the tolerance unit of the limit). ``remarks`` are plain sentences, most
-    important first. ``ambiguous``, ``unmatched``, ``conflicts`` and ``mismatches`` feed the rules.
+    important first. ``ambiguous``, ``conflicts``, ``mismatches``, ``stale`` (an unproved point has stale evidence),
+    ``unallocated``, ``waived_by`` (waivers that cover all that fails) and ``waivers_exceeded`` (why an approved waiver
+    does not help) feed the rules: the label shows only one of them.
     """
 
     requirement: str
@@ -196,6 +212,10 @@ class RequirementStatus:
     ambiguous: tuple[RecordRef, ...] = ()
     conflicts: tuple[Conflict, ...] = ()
     mismatches: tuple[Mismatch, ...] = ()
+    stale: bool = False
+    unallocated: bool = False
+    waived_by: tuple[str, ...] = ()
+    waivers_exceeded: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)

@@ -177,6 +177,7 @@ def status_from(
         mismatches=found.mismatches if found is not None else (),
         stale=facts.stale,
         unallocated=facts.unallocated and facts.applicable,
+        waived_by=facts.waiving.covering if facts.fails and facts.waiving.all_covered else (),
         waivers_exceeded=facts.waiving.exceeded,
     )
 

@@ -1,0 +1,32 @@
+"""Words that several rules use: counts, places and lists that do not run on."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from specflow.units import format_value
+
+
+def counted(number: int, noun: str) -> str:
+    """Return ``1 point``, ``2 points``."""
+    return f"{number:,} {noun}{'' if number == 1 else 's'}"
+
+
+def listed(words: Sequence[str], most: int = 3) -> str:
+    """Return ``a, b, c and 5 more``."""
+    head = ", ".join(words[:most])
+    rest = len(words) - most
+    return f"{head} and {rest} more" if rest > 0 else head
+
+
+def amount(value: float, unit: str, *, signed: bool = False) -> str:
+    """Return a difference to two decimals with its unit: ``0.35 dB``."""
+    number = format_value(value, decimals=2)
+    sign = "+" if signed and value >= 0 else ""
+    return f"{sign}{number} {unit}" if unit not in ("", "1") else f"{sign}{number}"
+
+
+def at_point(words: str, item: str = "") -> str:
+    """Return `` at 29.5 GHz, item 7``, or nothing where neither is known."""
+    parts = [part for part in (words, f"item {item}" if item else "") if part]
+    return f" at {', '.join(parts)}" if parts else ""
