@@ -42,7 +42,8 @@ WORKBOOK = Origin(file="harbour-requirements.xlsx", sha256="a1" * 32, sheet="Req
 PA_FILE = an_evidence_file("F-PA", name="pa_bench.xlsx", sha256="b2" * 32, size=20480)
 LNA_FILE = an_evidence_file("F-LNA", name="=lna.csv", sha256="c3" * 32, size=512)
 
-CORNERS = ((27.5, -40.0), (27.5, 25.0), (27.5, 85.0), (28.75, -40.0), (28.75, 25.0), (28.75, 85.0), (30.0, -40.0), (30.0, 25.0), (30.0, 85.0))  # fmt: skip
+TWO_BANDS = "cases(when frequency < 19 GHz: <= 30 dB; otherwise: <= 28 dB)"
+CORNERS = tuple((frequency, ambient) for frequency in (27.5, 28.75, 30.0) for ambient in (-40.0, 25.0, 85.0))
 
 
 def requirement(id: str, title: str, limit: str, parameter: str, block: str, **fields: object) -> Requirement:
@@ -80,14 +81,50 @@ def documents() -> list[Document]:
     guarded = DecisionRule(name=RuleName.GUARDED)
     requirements = [
         requirement("SYS-1", "Radiated power", ">= 45 dBm", "eirp", "TERM", tier=Tier.SYSTEM),
-        requirement("SYS-2", "Receive figure", ">= 9 dB/K TBR", "g_over_t", "TERM", tier=Tier.SYSTEM, conditions="RX"),
-        requirement("PA-1", "Output power of the PA", ">= 30 dBm", "output_power", "PA", parents=("SYS-1",), decision_rule=guarded),
-        requirement("PA-2", "Gain of the PA at each item", ">= 20 dB", "gain", "PA", parents=("SYS-1",), provers=Provers(rule="each of", items=("PA-A", "PA-B"))),
-        requirement("PA-3", "Current drawn", "<= 1.2 A", "supply_current", "PA", parents=("SYS-1",), conditions=None),
+        requirement(
+            "SYS-2", "Receive figure", ">= 9 dB/K TBR", "g_over_t", "TERM", tier=Tier.SYSTEM, conditions="RX"
+        ),
+        requirement(
+            "PA-1",
+            "Output power of the PA",
+            ">= 30 dBm",
+            "output_power",
+            "PA",
+            parents=("SYS-1",),
+            decision_rule=guarded,
+        ),
+        requirement(
+            "PA-2",
+            "Gain of the PA at each item",
+            ">= 20 dB",
+            "gain",
+            "PA",
+            parents=("SYS-1",),
+            provers=Provers(rule="each of", items=("PA-A", "PA-B")),
+        ),
+        requirement(
+            "PA-3", "Current drawn", "<= 1.2 A", "supply_current", "PA", parents=("SYS-1",), conditions=None
+        ),
         requirement("PA-4", "Harmonics", "TBD dBc", "harmonics", "PA", parents=("SYS-1",)),
-        requirement("LNA-1", "Noise of the LNA", "<= 1.5 dB", "noise_figure", "LNA", parents=("SYS-2",), conditions="RX"),
-        requirement("LNA-2", "Gain of the LNA, less at high frequency", "cases(when frequency < 19 GHz: <= 30 dB; otherwise: <= 28 dB)", "gain", "LNA", parents=("SYS-2",), conditions="RX4"),
-    ]  # fmt: skip
+        requirement(
+            "LNA-1",
+            "Noise of the LNA",
+            "<= 1.5 dB",
+            "noise_figure",
+            "LNA",
+            parents=("SYS-2",),
+            conditions="RX",
+        ),
+        requirement(
+            "LNA-2",
+            "Gain of the LNA, less at high frequency",
+            TWO_BANDS,
+            "gain",
+            "LNA",
+            parents=("SYS-2",),
+            conditions="RX4",
+        ),
+    ]
     return [
         a_block("TERM", name="Terminal", tier=Tier.SYSTEM),
         a_block("PA", name="Power amplifier", parent="TERM", quantity=4),
@@ -109,7 +146,9 @@ def documents() -> list[Document]:
             block="PA",
             rows=16,
             values=(
-                a_value_column("Pout", quantity=a_quantity("output_power"), unit="W", unit_from="units row", column=4),
+                a_value_column(
+                    "Pout", quantity=a_quantity("output_power"), unit="W", unit_from="units row", column=4
+                ),
                 a_value_column("Gain", quantity=a_quantity("gain"), unit="dB", column=6),
             ),
             conditions=(
@@ -119,10 +158,17 @@ def documents() -> list[Document]:
             performer="bench 1",
         ),
         an_evidence_table(
-            "T-LNA", file="F-LNA", sheet="", block="LNA", rows=4,
-            values=(a_value_column("NF", quantity=a_quantity("noise_figure"), column=2), a_value_column("G", quantity=a_quantity("gain"), column=3)),
+            "T-LNA",
+            file="F-LNA",
+            sheet="",
+            block="LNA",
+            rows=4,
+            values=(
+                a_value_column("NF", quantity=a_quantity("noise_figure"), column=2),
+                a_value_column("G", quantity=a_quantity("gain"), column=3),
+            ),
         ),
-    ]  # fmt: skip
+    ]
 
 
 def columns() -> dict[str, EvidenceColumns]:

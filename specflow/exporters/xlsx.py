@@ -25,7 +25,7 @@ HEADER = 3  # row of the headers, from 0
 MOST_ROWS = 1_048_000
 MOST_LINKS = 60_000  # a sheet may hold 65,530 links
 MOST_TEXT = 32_767  # characters in a cell
-FIGURE = re.compile(r"^(?P<sign>[+-]?)(?P<digits>\d+(?:\.(?P<decimals>\d+))?)(?P<unit>[^\de].*)?$")
+FIGURE = re.compile(r"^(?P<sign>[+-]?)(?P<digits>\d+(?:\.(?P<decimals>\d+))?)(?P<unit> .*)?$")
 FILLS: dict[CellTone, dict[str, Any]] = {
     CellTone.PLAIN: {},
     CellTone.GOOD: {"bg_color": "#DDEFE3"},

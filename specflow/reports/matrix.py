@@ -27,6 +27,7 @@ from specflow.reports.origins import OriginFinder
 MATRIX_COLUMNS = (
     ReportColumn(key="id", title="Requirement", width=16),
     ReportColumn(key="title", title="Title", width=34),
+    ReportColumn(key="label", title="State", width=24),
     ReportColumn(key="tier", title="Tier", width=10),
     ReportColumn(key="parents", title="Parents", width=16),
     ReportColumn(key="block", title="Block", width=14),
@@ -51,7 +52,6 @@ MATRIX_COLUMNS = (
     ReportColumn(key="evidence", title="Governing cell", width=44),
     ReportColumn(key="compliance", title="Compliance", width=18),
     ReportColumn(key="close_out", title="Close-out", width=34),
-    ReportColumn(key="label", title="State", width=24),
     ReportColumn(key="findings", title="Findings", align=Align.RIGHT, width=16),
     ReportColumn(key="owner", title="Owner", width=16),
 )
@@ -81,7 +81,7 @@ def compliance_matrix(
         ReportRow(
             id=requirement.id,
             cells=(
-                *_what_is_required(requirement, snapshot, dictionary),
+                *_what_is_required(requirement, results.of(requirement.id), snapshot, dictionary),
                 *_what_is_shown(results.of(requirement.id), finder),
                 text(_count_words(per_subject.get(code_key(requirement.id), Counter()))),
                 text(requirement.owner),
@@ -104,13 +104,14 @@ def governing_tables(results: Results, requirements: Sequence[Requirement]) -> s
 
 
 def _what_is_required(
-    requirement: Requirement, snapshot: Snapshot, dictionary: Dictionary
+    requirement: Requirement, status: RequirementStatus, snapshot: Snapshot, dictionary: Dictionary
 ) -> tuple[ReportCell, ...]:
     source = requirement.source
     activities = snapshot.activities_of.get(code_key(requirement.id), ())
     return (
         ReportCell(text=requirement.id, origin=requirement.origin, link=f"points/{requirement.id}"),
         text(requirement.title),
+        text(status.label.value, label_tone(status.label)),
         text(requirement.tier.value),
         text(", ".join(requirement.parents) or requirement.derived_reason),
         text(requirement.block),
@@ -171,7 +172,6 @@ def _what_is_shown(status: RequirementStatus, finder: OriginFinder) -> tuple[Rep
         ReportCell(text=str(origin or DASH), origin=origin),
         text(status.compliance.value, COMPLIANCE_TONES.get(status.compliance, CellTone.DOUBTFUL)),
         text(f"{status.close_out.value}: {status.close_out_reason}"),
-        text(status.label.value, label_tone(status.label)),
     )
 
 
