@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import unicodedata
+from functools import lru_cache
 from typing import Annotated
 
 from pydantic import AfterValidator, BaseModel, ConfigDict
@@ -28,6 +29,7 @@ def clean_code(text: str) -> str:
     return code
 
 
+@lru_cache(maxsize=1 << 16)  # asked for at every look-up, by every part of the program
 def code_key(code: str) -> str:
     """Return what two codes are compared by: they are the same when they differ in case only."""
     return unicodedata.normalize("NFC", code).strip().casefold()

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 
 from specflow.model.verdict import CloseOut, Compliance, Label, Verdict
 from specflow.verification.compliance import Facts, compliance
@@ -42,16 +42,22 @@ _APPLIES: dict[Label, Callable[[Facts], bool]] = {
 }
 
 
-def label(facts: Facts) -> Label:
-    """Return the label of a requirement."""
-    return next((one for one in Label if _APPLIES[one](facts)), Label.INCONCLUSIVE)
+_ORDER = [(one, _APPLIES[one]) for one in Label]
+_AFTER_MARGINAL = _ORDER[list(Label).index(Label.MARGINAL) + 1 :]
 
 
-def close_out(facts: Facts) -> tuple[CloseOut, str]:
-    """Return open or closed, and the reason in words. A marginal result is shown, and does not keep a row open."""
-    reason = next(
-        (one for one in Label if one is not Label.MARGINAL and _APPLIES[one](facts)), Label.INCONCLUSIVE
-    )
+def label_and_close_out(facts: Facts) -> tuple[Label, CloseOut, str]:
+    """Return the label, and open or closed with the reason; a marginal result is shown and keeps no row open."""
+    first = _first(facts, _ORDER)
+    reason = first if first is not Label.MARGINAL else _first(facts, _AFTER_MARGINAL)
+    return (first, *_close_out(facts, reason))
+
+
+def _first(facts: Facts, order: Sequence[tuple[Label, Callable[[Facts], bool]]]) -> Label:
+    return next((one for one, applies in order if applies(facts)), Label.INCONCLUSIVE)
+
+
+def _close_out(facts: Facts, reason: Label) -> tuple[CloseOut, str]:
     if reason is Label.NOT_APPLICABLE:
         return CloseOut.CLOSED, f"not applicable: {facts.not_applicable_reason}"
     if reason is Label.CLOSED_WAIVED:

@@ -83,25 +83,29 @@ def item_points(bench: Bench, *, together: bool) -> list[ItemPoints]:
     if bench.readings.size == 0:
         return [_without_evidence(bench)]
     names, pair, item = _by_item(bench, together or bench.together)
-    found = _Grid(bench, pair, item, len(names))
-    counts = _counting(found)
-    governing = _governing(found, counts)
-    return _items(found, names, counts, governing)
+    point = bench.readings.point if pair is None else bench.readings.point[pair]
+    grid = _Grid(bench, pair, item, len(names), item * bench.points.size + point)
+    counts = _counting(grid)
+    governing = _governing(grid, counts)
+    return _items(grid, names, counts, governing)
 
 
 @dataclass(frozen=True, slots=True)
 class _Grid:
-    """Readings laid out over items × points: reading ``pair[i]`` is evidence of item ``item[i]``."""
+    """Readings laid out over items × points: reading ``pair[i]`` is evidence of item ``item[i]`` in cell ``cell[i]``.
+
+    ``pair`` is None where every reading is evidence of one item: then reading i is pair i. Points run fastest.
+    """
 
     bench: Bench
-    pair: Rows
+    pair: Rows | None
     item: Rows
     items: int
+    cell: Rows
 
-    @property
-    def cell(self) -> Rows:
-        """The cell of each reading, points fastest."""
-        return self.item * self.bench.points.size + self.bench.readings.point[self.pair]
+    def of(self, values: NDArray[T]) -> NDArray[T]:
+        """Return values of the readings, one for each reading and item."""
+        return values if self.pair is None else values[self.pair]
 
     @property
     def cells(self) -> int:
@@ -119,21 +123,20 @@ def _without_evidence(bench: Bench) -> ItemPoints:
     return replace(nobody, results=results, effective=verdict, counts=free)
 
 
-def _by_item(bench: Bench, together: bool) -> tuple[Sequence[str], Rows, Rows]:
+def _by_item(bench: Bench, together: bool) -> tuple[Sequence[str], Rows | None, Rows]:
     """Return item names, and for every (pair, item) the pair and the code of the item it is evidence of."""
-    pair = np.arange(bench.readings.size)
     if together:
-        return (ALL_ITEMS,), pair, np.zeros(len(pair), np.intp)
+        return (ALL_ITEMS,), None, np.zeros(bench.readings.size, np.intp)
     names = bench.records.items
     item = bench.records.item[bench.readings.record].astype(np.intp)
     if len(names) == 1:
-        return names, pair, item
+        return names, None, item
     if "" in names and any(is_of_design(source) for source in bench.records.sources):
-        return _with_design(bench, names, pair, item)
-    return _present(names, pair, item)
+        return _with_design(bench, names, item)
+    return _present(names, None, item)
 
 
-def _present(names: Sequence[str], pair: Rows, item: Rows) -> tuple[Sequence[str], Rows, Rows]:
+def _present(names: Sequence[str], pair: Rows | None, item: Rows) -> tuple[Sequence[str], Rows | None, Rows]:
     """Keep the items that have evidence at a required point, in their order."""
     seen = np.flatnonzero(np.bincount(item, minlength=len(names)))
     if len(seen) == len(names):
@@ -141,18 +144,16 @@ def _present(names: Sequence[str], pair: Rows, item: Rows) -> tuple[Sequence[str
     return [names[code] for code in seen.tolist()], pair, np.searchsorted(seen, item)
 
 
-def _with_design(
-    bench: Bench, names: Sequence[str], pair: Rows, item: Rows
-) -> tuple[Sequence[str], Rows, Rows]:
+def _with_design(bench: Bench, names: Sequence[str], item: Rows) -> tuple[Sequence[str], Rows | None, Rows]:
     """Give evidence about the design to every item that has evidence of its own."""
     of_design = np.array([is_of_design(source) for source in bench.records.sources])
     common = of_design[bench.records.source[bench.readings.record]] & (item == list(names).index(""))
     own = np.unique(item[~common])
     if len(own) == 0:
-        return _present(names, pair, item)
-    pairs, items = [pair[~common]], [item[~common]]
+        return _present(names, None, item)
+    pairs, items = [np.flatnonzero(~common)], [item[~common]]
     for code in own:
-        pairs.append(pair[common])
+        pairs.append(np.flatnonzero(common))
         items.append(np.full(int(common.sum()), code, np.intp))
     return _present(names, np.concatenate(pairs), np.concatenate(items))
 
@@ -162,15 +163,15 @@ def _counting(grid: _Grid) -> Flags:
 
     A stale fail is lifted by a reading with credit, of the same or a higher rank, of the same item at the point.
     """
-    weights, pair = grid.bench.credit, grid.pair
-    verdict, credit = grid.bench.readings.verdict[pair], weights.counts[pair]
+    weights = grid.bench.credit
+    verdict, credit = grid.of(grid.bench.readings.verdict), grid.of(weights.counts)
     failing = verdict >= _CONDITIONAL_FAIL
     counts = np.asarray((credit & (verdict != _NONE)) | failing)
-    lifted = failing & ~credit & weights.stale[pair]
-    if lifted.any():
+    lifted = failing & ~credit & grid.of(weights.stale)
+    if np.count_nonzero(lifted):
         best = np.full(grid.cells, -1, np.int8)
-        np.maximum.at(best, grid.cell[credit], weights.rank[pair][credit])
-        counts &= ~(lifted & (weights.rank[pair] <= best[grid.cell]))
+        np.maximum.at(best, grid.cell[credit], grid.of(weights.rank)[credit])
+        counts &= ~(lifted & (grid.of(weights.rank) <= best[grid.cell]))
     return counts
 
 
@@ -178,17 +179,19 @@ def _governing(grid: _Grid, counts: Flags) -> Rows:
     """Return for each cell the place (in ``pair``) of the governing reading, -1 where there is none."""
     cell, readings = grid.cell, grid.bench.readings
     weight = counts.astype(np.int16) << 8
-    weight |= grid.bench.credit.rank[grid.pair].astype(np.int16) << 4
-    weight |= readings.verdict[grid.pair]
+    weight |= grid.of(grid.bench.credit.rank).astype(np.int16) << 4
+    weight |= grid.of(readings.verdict)
     heaviest = np.full(grid.cells, -1, np.int16)
     np.maximum.at(heaviest, cell, weight)
-    margin = readings.guarded[grid.pair]
-    margin = np.where((weight == heaviest[cell]) & (margin == margin), margin, np.inf)
+    heavy = np.flatnonzero(weight == heaviest[cell])
+    cell, margin = cell[heavy], grid.of(readings.guarded)[heavy]
+    margin = np.where(margin == margin, margin, np.inf)
     least = np.full(grid.cells, np.inf)
     np.minimum.at(least, cell, margin)
-    chosen = np.flatnonzero((weight == heaviest[cell]) & (margin == least[cell]))[::-1]
+    first = np.flatnonzero(margin == least[cell])[::-1]
+    cell, chosen = cell[first], heavy[first]
     governing = np.full(grid.cells, -1, np.intp)
-    governing[cell[chosen]] = chosen  # of equals the first stays, because it is written last
+    governing[cell] = chosen  # of equals the first stays, because it is written last
     return governing
 
 
@@ -196,19 +199,20 @@ def _items(grid: _Grid, names: Sequence[str], counts: Flags, governing: Rows) ->
     """Spread the governing readings over all cells, and cut the grid into items."""
     bench, readings, records = grid.bench, grid.bench.readings, grid.bench.records
     shape = grid.items, bench.points.size
-    empty = None if (governing >= 0).all() else governing < 0
-    pair = grid.pair[governing]
+    empty = governing < 0
+    full = not np.count_nonzero(empty)
+    pair = governing if grid.pair is None else grid.pair[governing]
     record = readings.record[pair]
 
     def spread(values: NDArray[T], rest: float) -> NDArray[T]:
-        if empty is not None:
+        if not full:
             values[empty] = rest
         return values.reshape(shape)
 
     verdict = spread(readings.verdict[pair], _NONE)
     counted = spread(counts[governing], False)
     proved = _passing(verdict, bench.conditional_pass_counts) & counted & _proved(grid)
-    if bench.nothing_required is not None and empty is not None:
+    if bench.nothing_required is not None and not full:
         free = bench.nothing_required & empty.reshape(shape)
         verdict[free], counted[free], proved[free] = Verdict.NOT_TRIGGERED, True, True
     effective = np.where(counted, verdict, np.int8(_NONE))
@@ -218,7 +222,7 @@ def _items(grid: _Grid, names: Sequence[str], counts: Flags, governing: Rows) ->
     margin, guarded = spread(readings.margin[pair], np.nan), spread(readings.guarded[pair], np.nan)
     u = spread(readings.u[pair], np.nan)
     lower, upper = (
-        np.broadcast_to(side, shape) if side.size == 1 else spread(side[pair], np.nan)
+        np.full(shape, side[0]) if side.size == 1 else spread(side[pair], np.nan)
         for side in (readings.lower, readings.upper)
     )
     source = spread(records.source[record], -1)
@@ -249,8 +253,8 @@ def _items(grid: _Grid, names: Sequence[str], counts: Flags, governing: Rows) ->
 
 def _stale(grid: _Grid) -> Flags:
     stale = np.zeros(grid.cells, bool)
-    if grid.bench.credit.stale.any():
-        stale[grid.cell[grid.bench.credit.stale[grid.pair]]] = True
+    if np.count_nonzero(grid.bench.credit.stale):
+        stale[grid.cell[grid.of(grid.bench.credit.stale)]] = True
     return stale
 
 
@@ -258,14 +262,14 @@ def _proved(grid: _Grid) -> Flags:
     """Ask the one place that decides, item by item, whether readings with credit that pass prove each point."""
     bench = grid.bench
     passing = _passing(bench.readings.verdict, bench.conditional_pass_counts) & bench.credit.counts
-    record = bench.readings.record[grid.pair]
-    passing = passing[grid.pair]
-    rows = []
+    places = np.flatnonzero(grid.of(passing))
+    record, item = grid.of(bench.readings.record)[places], grid.item[places]
+    proved = np.empty((grid.items, bench.points.size), bool)
     for code in range(grid.items):
         good = np.zeros(bench.records.size, bool)
-        good[record[passing if grid.items == 1 else passing & (grid.item == code)]] = True
-        rows.append(proves(bench.points, bench.matching, good))
-    return rows[0][None, :] if len(rows) == 1 else np.stack(rows)
+        good[record if grid.items == 1 else record[item == code]] = True
+        proved[code] = proves(bench.points, bench.matching, good)
+    return proved
 
 
 def _passing(verdict: Codes, conditional: bool) -> Flags:

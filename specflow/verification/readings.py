@@ -40,6 +40,7 @@ Array = NDArray[np.float64]
 Rows = NDArray[np.int32]
 Codes = NDArray[np.int8]
 _NO_BOUND = np.array([np.nan])
+_PASS, _FAIL = int(Verdict.PASS), int(Verdict.FAIL)
 
 
 @dataclass(frozen=True, slots=True)
@@ -47,7 +48,7 @@ class Readings:
     """Pairs (p,): reading ``record[i]`` serves ``point[i]``; sorted by point.
 
     ``low``, ``high`` as read and ``lower``, ``upper`` (the core limit, NaN where a side has no bound; one value where
-    it is the same everywhere) are in the unit of the limit; ``u``, ``margin`` and ``guarded`` in its tolerance unit, NaN
+    it is the same everywhere) are in the unit of the limit; ``u``, ``margin``, ``guarded`` in its tolerance unit, NaN
     where there is none. ``margin`` is the distance to the core limit; ``guarded`` that to the acceptance limit (guard
     band, test tolerance, excess uncertainty). ``marginal``: a pass or fail nearer to the limit than U, or than the
     threshold of the project without one. ``why`` are sentences about what could not be decided.
@@ -274,13 +275,14 @@ def _outside(bounds: Bounds, verdict: Codes, margin: Array, guarded: Array) -> l
 def _marginal(
     verdict: Codes, margin: Array, u: Array, bounds: Bounds, judgement: Judgement
 ) -> NDArray[np.bool_]:
-    decided = (verdict == Verdict.PASS) | (verdict == Verdict.FAIL)
-    threshold = _house_threshold(bounds, judgement, margin)
-    near = np.where(np.isnan(u), threshold, 2 * u)
-    return np.asarray(decided & (np.abs(margin) < near))
+    near = 2 * u
+    unknown = near != near
+    if np.count_nonzero(unknown):
+        near = np.where(unknown, _house_threshold(bounds, judgement), near)
+    return np.asarray((np.abs(margin) < near) & ((verdict == _PASS) | (verdict == _FAIL)))
 
 
-def _house_threshold(bounds: Bounds, judgement: Judgement, margin: Array) -> Floats:
+def _house_threshold(bounds: Bounds, judgement: Judgement) -> Floats:
     if judgement.parsed_unit.is_log:
         return judgement.policy.marginal_db
     sizes = [

@@ -15,12 +15,12 @@ from specflow.model.base import code_key
 from specflow.model.block import Tier
 from specflow.model.limit import LimitState
 from specflow.model.requirement import Activity, Requirement, RuleName
-from specflow.model.verdict import GoverningPoint, PointsState, RequirementStatus
+from specflow.model.verdict import CloseOut, GoverningPoint, PointsState, RequirementStatus
 from specflow.statistics.decision import AcceptanceInterval, decide, guard_band
 from specflow.verification.activity import ActivityOutcome
 from specflow.verification.applicability import applicability
 from specflow.verification.assessment import Assessment, assess
-from specflow.verification.closeout import close_out, label
+from specflow.verification.closeout import label_and_close_out
 from specflow.verification.compliance import Facts, compliance
 from specflow.verification.decisions import Decisions
 from specflow.verification.limit_inputs import limit_columns
@@ -153,7 +153,7 @@ def status_from(
     """Put the axes together."""
     outcomes = found.outcomes if found is not None else ()
     results = tuple(outcome.result for outcome in outcomes)
-    closed, reason = close_out(facts)
+    label, closed, reason = label_and_close_out(facts)
     return RequirementStatus(
         requirement=requirement.id,
         activities=results,
@@ -166,7 +166,7 @@ def status_from(
         compliance=compliance(facts),
         close_out=closed,
         close_out_reason=reason,
-        label=label(facts),
+        label=label,
         governing=_worst(outcomes),
         smallest_margin=_smallest(outcomes),
         unit=found.unit if found is not None else "",
@@ -209,7 +209,7 @@ def _said(requirement: Requirement, facts: Facts, found: Assessment, decisions: 
                 f"the board closed revision {approval.requirement_revision} on {approval.on}; "
                 f"now it is revision {requirement.revision}"
             )
-        elif label(facts).value != approval.computed_label and approval.computed_label:
+        elif approval.computed_label and label_and_close_out(facts)[1] is not CloseOut.CLOSED:
             said.append(
                 f"the board closed it on {approval.on} as {approval.computed_label}; now it is {ready}"
             )

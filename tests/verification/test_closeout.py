@@ -8,9 +8,18 @@ from dataclasses import replace
 import pytest
 
 from specflow.model.verdict import CloseOut, Compliance, Label, Verdict
-from specflow.verification.closeout import close_out, label
+from specflow.verification.closeout import label_and_close_out
 from specflow.verification.compliance import Facts, compliance
 from specflow.verification.waiving import Waiving
+
+
+def label(facts: Facts) -> Label:
+    return label_and_close_out(facts)[0]
+
+
+def close_out(facts: Facts) -> tuple[CloseOut, str]:
+    return label_and_close_out(facts)[1:]
+
 
 READY = Facts(counted=True, complete=True, verdicts=frozenset({Verdict.PASS}), some_proved=True)
 FAILS = replace(READY, complete=False, verdicts=frozenset({Verdict.PASS, Verdict.FAIL}))
