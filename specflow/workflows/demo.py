@@ -117,7 +117,7 @@ def _attach(store: ProjectStore, folder: Path, result: ResultFile) -> str:
     mapping = folder / "mappings" / result.mapping if result.mapping else None
     if mapping is not None:
         asked = [question for table in preview_attach(store, path).unresolved for question in table.questions]
-        said.append(f"refused as it is ({len(asked)} open, the last: {asked[-1].what})" if asked else "")
+        said.append(f"refused as it is ({len(asked)} open, the first: {asked[0].what})" if asked else "")
         said.append(f"with {mapping.name}")
     preview = preview_attach(store, path, AttachOptions(mapping=mapping))
     rejected = preview.rejected_cells
