@@ -17,12 +17,31 @@ from specflow.cli.options import (
     YesOption,
     open_store,
 )
+from specflow.errors import SpecflowError
 
 if TYPE_CHECKING:
+    from specflow.store import ProjectStore
     from specflow.workflows.load_workbook import LoadPreview
 
 WorkbookArgument = Annotated[
-    Path, typer.Argument(help="The workbook (xlsx), or one of its sheets as csv.", show_default=False)
+    Path,
+    typer.Argument(
+        help="The workbook (xlsx), one of its sheets as csv, or a table of published limits.",
+        show_default=False,
+    ),
+]
+PublishedOption = Annotated[
+    bool, typer.Option("--published", help="The file is a table of published limits (csv), one row a limit.")
+]
+BlockOption = Annotated[
+    str,
+    typer.Option(
+        help="With --published: the block the limits are on; else the one without a parent.",
+        show_default=False,
+    ),
+]
+PrefixOption = Annotated[
+    str, typer.Option(help="With --published: what goes before every id.", show_default=False)
 ]
 
 
@@ -32,6 +51,9 @@ def load(
     yes: YesOption = False,
     dry_run: DryRunOption = False,
     take_rest: TakeRestOption = False,
+    published: PublishedOption = False,
+    block: BlockOption = "",
+    prefix: PrefixOption = "",
     by: ByOption = "",
     as_json: JsonOption = False,
 ) -> None:
@@ -40,11 +62,18 @@ def load(
     Says back in words how each limit and each conditions set was read, shows what changes in meaning, lists what was
     rejected with its cell, and asks before anything is stored. Loading an edited workbook again changes only what
     differs.
-    """
-    from specflow.workflows.load_workbook import accept_load, preview_load, refuse_rejected
 
+    With --published the file is a csv table of a standard's limits (id, standard, version, clause, parameter, bound,
+    value, unit, conditions); each becomes a requirement, and of each row that does not it is said why.
+    """
+    from specflow.workflows.load_workbook import accept_load, refuse_rejected
+
+    if (block or prefix) and not published:
+        raise SpecflowError(
+            "--block and --prefix belong to --published", hint="in a workbook each row says both"
+        )
     with open_store(project, read_only=dry_run) as store:
-        preview = preview_load(store, workbook)
+        preview = _preview(store, workbook, published=published, block=block, prefix=prefix)
         if not as_json:
             _show(preview)
         stored = not dry_run and _is_accepted(preview, yes=yes, take_rest=take_rest)
@@ -56,6 +85,15 @@ def load(
     refuse_rejected(preview, take_rest=take_rest)
     if preview.changes and not as_json:
         say(f"stored; the project is at revision {revision}" if stored else "nothing was stored")
+
+
+def _preview(store: ProjectStore, path: Path, *, published: bool, block: str, prefix: str) -> LoadPreview:
+    from specflow.workflows.load_published import preview_published
+    from specflow.workflows.load_workbook import preview_load
+
+    return (
+        preview_published(store, path, block=block, prefix=prefix) if published else preview_load(store, path)
+    )
 
 
 def _is_accepted(preview: LoadPreview, *, yes: bool, take_rest: bool) -> bool:

@@ -55,11 +55,12 @@ class PublishedLimit:
 
 @dataclass(frozen=True, slots=True)
 class NotTaken:
-    """A row that makes no limit, and why."""
+    """A row that makes no limit, and why; ``is_limit`` when it should have made one and cannot be read."""
 
     row: int
     id: str
     why: str
+    is_limit: bool = True
 
 
 @dataclass(frozen=True, slots=True)
@@ -144,9 +145,9 @@ def published_limits(rows: Sequence[PublishedRow]) -> PublishedTable:
     usable: list[PublishedRow] = []
     seen: dict[str, int] = {}
     for row in rows:
-        why = _why_not(row, seen)
-        if why:
-            not_taken.append(NotTaken(row.number, row.id, why))
+        why_no_limit, why = _why_no_limit(row), _why_not(row, seen)
+        if why_no_limit or why:
+            not_taken.append(NotTaken(row.number, row.id, why_no_limit or why, not why_no_limit))
         else:
             seen[row.id.casefold()] = row.number
             usable.append(row)
@@ -160,18 +161,24 @@ def published_limits(rows: Sequence[PublishedRow]) -> PublishedTable:
     return PublishedTable(tuple(limits), tuple(not_taken), len(rows))
 
 
+def _why_no_limit(row: PublishedRow) -> str:
+    """Say why a row is no limit at all; "" when it is one."""
+    if not row.bound:
+        value = f"{row.value} {row.unit}".strip()
+        return f"no bound is stated, so it limits nothing: {row.parameter} = {value} is a definition, stimulus or term"
+    if row.said("is_requirement") == "no":
+        return "the row says that it is not itself a requirement (is_requirement=no)"
+    return ""
+
+
 def _why_not(row: PublishedRow, seen: Mapping[str, int]) -> str:
+    """Say what is wrong with a row that is a limit; "" when nothing is."""
     if not row.id:
         return "the row has no id"
     if row.id.casefold() in seen:
         return f"the id is that of row {seen[row.id.casefold()]}"
-    if not row.bound:
-        value = f"{row.value} {row.unit}".strip()
-        return f"no bound is stated, so it limits nothing: {row.parameter} = {value} is a definition, stimulus or term"
     if row.bound not in _BOUNDS:
         return f"the bound {row.bound!r} is not one of {', '.join(_BOUNDS)}"
-    if row.said("is_requirement") == "no":
-        return "the row says that it is not itself a requirement (is_requirement=no)"
     return "" if row.value else "the row has a bound but no value"
 
 

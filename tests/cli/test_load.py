@@ -165,3 +165,26 @@ def test_without_a_project_it_says_how_to_make_one(command: Command, tmp_path: P
     outcome = command("load", path)
     assert outcome.code == ExitCode.BAD_INPUT
     assert "specflow init" in outcome.err
+
+
+def test_a_table_of_published_limits_loads_as_requirements_of_a_block(
+    command: Command, workbook: Path, tmp_path: Path
+) -> None:
+    command("load", workbook, "--yes")
+    table = tmp_path / "limits.csv"
+    table.write_text(
+        "id,parameter,bound,value,unit,conditions\n"
+        "S-1,noise figure,max,3.2,dB,band=n257;note=as measured\nS-2,channel raster,,60,kHz,\n",
+        encoding="utf-8",
+    )
+    outcome = command("load", table, "--published", "--block", "UT", "--prefix", "STD-", "--yes")
+    assert outcome.code == ExitCode.CLEAN, outcome.err
+    assert "2 rows: 1 taken as requirements" in " ".join(outcome.out.split())
+    assert ("STD-S-1", "<= 3.2 dB") in stored(tmp_path)
+    assert "nothing changes" in command("load", table, "--published", "--prefix", "STD-").err
+
+
+def test_options_of_published_tables_are_refused_for_workbooks(command: Command, workbook: Path) -> None:
+    outcome = command("load", workbook, "--block", "UT")
+    assert outcome.code == ExitCode.BAD_INPUT
+    assert "belong to --published" in outcome.err
