@@ -1,17 +1,17 @@
-"""Measurement files: every table of a workbook or text file read into evidence, with questions where it is not clear."""
+"""Measurement files: every table of a workbook or text file read into evidence, or asked about where not clear."""
 
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
-from specflow.errors import FileError
-from specflow.importers.measured.evidence import SOURCE_COLUMN, read_table
+from specflow.importers.measured.context import Context
+from specflow.importers.measured.evidence import read_table
 from specflow.importers.measured.facts import read_preamble
 from specflow.importers.measured.layout import layout_key
 from specflow.importers.measured.mapping import LayoutMapping, read_mappings, write_mapping
-from specflow.importers.measured.meaning import Context, read_meanings
+from specflow.importers.measured.meaning import read_meanings
 from specflow.importers.measured.proposal import propose
 from specflow.importers.measured.result import (
     ColumnReading,
@@ -30,7 +30,6 @@ from specflow.model.snapshot import Snapshot
 from specflow.parameters import Dictionary
 
 __all__ = [
-    "SOURCE_COLUMN",
     "ColumnReading",
     "MeasuredTable",
     "Measurements",
@@ -91,12 +90,10 @@ def read_measurements(
 def _read(
     found: _Found, context: Context, person: Mapping[str, str], include_hidden_rows: bool
 ) -> MeasuredTable:
-    from dataclasses import replace
-
     mapping = found.mapping
     if include_hidden_rows:
         mapping = replace(mapping, include_hidden_rows=True)
-    table = read_table(found.table, context, mapping, found.mapping_from, person, found.key)
+    table = read_table(found.table, found.key, context, mapping, found.mapping_from, person)
     if not found.mapping_from:
         return table
     return replace(table, mapping=write_mapping(replace(found.mapping, layout=found.key)))
@@ -148,7 +145,7 @@ def _tables(
 def _mapping_for(
     key: str, given: Sequence[LayoutMapping], snapshot: Snapshot, name: str
 ) -> tuple[LayoutMapping, str]:
-    """The mapping of a layout: from the file that the person gave, else as stored; one without a key fits a single layout."""
+    """The mapping of a layout: from the given file (one without a key fits any layout), else as stored."""
     for mapping in given:
         if mapping.layout == key or (not mapping.layout and len(given) == 1):
             return mapping, f"the mapping file {name}"
@@ -206,8 +203,3 @@ def _finding(grid: Grid, message: str, severity: Severity) -> Finding:
         remedy="see whether anything is missing below the table" if severity is Severity.WARNING else "",
         origin=Origin(file=grid.file, sheet="" if grid.name == grid.file else grid.name),
     )
-
-
-def missing_file(path: Path) -> FileError:
-    """The error for a mapping file that is not there."""
-    return FileError("there is no such file", where=str(path), hint="check the path of the mapping")

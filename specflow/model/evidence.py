@@ -201,6 +201,10 @@ class ItemChange(Document):
     origin: Origin | None = None
 
 
+#: The extra column of stacked tables: the letter of the column that a value stands in.
+SOURCE_COLUMN = "source column"
+
+
 @dataclass(frozen=True, slots=True)
 class ValueArrays:
     """Values of one column: a reading is the interval [low, high] (the same array when all are points).
@@ -219,7 +223,8 @@ class EvidenceColumns:
     """The arrays of one evidence table; all have the table's number of rows.
 
     ``source_rows`` int32: row numbers in the sheet; ``items``: item ids or serials as recorded;
-    ``dates``: ISO dates per row where a column gives them.
+    ``dates``: ISO dates per row where a column gives them; ``extra``: what else stands beside a row, as words (limits
+    and verdicts of the source, remarks; ``SOURCE_COLUMN`` where values of several columns were stacked).
     """
 
     conditions: Columns

@@ -14,6 +14,14 @@ def column_letters(column: int) -> str:
     return letters
 
 
+def column_number(letters: str) -> int:
+    """Return the 1-based column of a spreadsheet name: A is 1, AA is 27."""
+    number = 0
+    for letter in letters.upper():
+        number = number * 26 + ord(letter) - 64
+    return number
+
+
 class Origin(Document):
     """A place in a file: rows and columns count from 1; ``sheet`` is "" in a text file."""
 

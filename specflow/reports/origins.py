@@ -3,8 +3,8 @@
 from __future__ import annotations
 
 from specflow.model.base import code_key
-from specflow.model.evidence import EvidenceColumns, EvidenceFile, EvidenceTable, ValueColumn
-from specflow.model.origin import Origin
+from specflow.model.evidence import SOURCE_COLUMN, EvidenceColumns, EvidenceFile, EvidenceTable, ValueColumn
+from specflow.model.origin import Origin, column_number
 from specflow.model.report import ReportCell
 from specflow.model.snapshot import Snapshot
 from specflow.model.verdict import RecordRef
@@ -54,8 +54,13 @@ class OriginFinder:
             sha256=file.sha256 if file else "",
             sheet=table.sheet,
             row=int(self.columns(record.table).source_rows[record.row]),
-            column=self.column(record).column,
+            column=self._column_number(record),
         )
+
+    def _column_number(self, record: RecordRef) -> int:
+        """The column of a record: that of its values, or its own where several columns were stacked."""
+        stacked = self.columns(record.table).extra.get(SOURCE_COLUMN)
+        return self.column(record).column if stacked is None else column_number(stacked.word(record.row))
 
     def recorded(self, record: RecordRef | None) -> ReportCell:
         """Return the value as it stands in its cell, in the unit as recorded."""

@@ -202,7 +202,7 @@ def _refuse_unsettled(preview: AttachPreview, decision: Decision) -> None:
         raise DocumentError(
             f"{preview.rejected_cells} cells or rows are rejected; nothing was stored",
             where=where,
-            hint="mend them in the file, or say --take-rest to store what could be read; what is left out stays a finding",
+            hint="mend them in the file, or say --take-rest to store the rest; what is left out stays a finding",
         )
     empty = [table for table in preview.measurements.tables if table.document is None and not table.questions]
     if empty and not preview.new_tables and not preview.known:

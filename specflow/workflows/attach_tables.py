@@ -80,7 +80,13 @@ def _table_json(preview: AttachPreview, place: int, table: MeasuredTable) -> dic
         "blank": dict(table.blank),
         "stored_as": preview.known.get(place, ""),
         "columns": [
-            {"header": one.header, "cell": one.cell, "role": one.role.value, "meaning": one.meaning, "reason": one.reason}
+            {
+                "header": one.header,
+                "cell": one.cell,
+                "role": one.role.value,
+                "meaning": one.meaning,
+                "reason": one.reason,
+            }
             for one in table.recognised
         ],
         "questions": [

@@ -15,7 +15,7 @@ RowKey = tuple[object, ...]
 
 @dataclass(frozen=True, slots=True)
 class Replacement:
-    """Rows (positions) of an earlier table with the identity of rows of the new one; ``differing``: with other values."""
+    """Rows (positions) of an earlier table that are rows of the new one again; ``differing``: with other values."""
 
     earlier: str
     earlier_rows: int

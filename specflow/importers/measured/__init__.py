@@ -1,12 +1,14 @@
 """Measurement tables: from the grid of a sheet to columns of evidence, in steps that each have one module.
 
-- ``tables``      where tables are on a sheet: header row, units row, data rows; ``cells`` their columns, read once
-- ``facts``       the key–value rows above a table; ``stated`` what is said for all of its rows, and by whom
-- ``header_text`` a header taken apart; ``roles`` what its words say; ``meaning`` what each column is, with the reason
-- ``mapping``     how a person settled a layout (TOML), ``proposal`` the mapping as we would write it, ``layout`` the key
-- ``readings``    cells to numbers and intervals; ``conditions``, ``words`` the other columns; ``uncertainty`` where u is from
-- ``pivot``       columns that are one quantity at several conditions, stacked
-- ``result``      what comes back: tables, questions, rejected cells
+- where: ``tables`` (header row, units row, data rows), ``cells`` (their columns, read once), ``facts`` (key–value
+  rows above a table), ``layout`` (the key under which a layout is known again)
+- what: ``header_text`` (a header taken apart), ``roles``, ``quantity_text``, ``unit_source`` (what its words say),
+  ``meaning`` (the order of decisions) with ``column``, ``value_column``, ``condition_column``, ``constants`` and
+  ``pairing``
+- said: ``stated`` (by the person, the mapping or the file, for all rows), ``mapping`` (TOML), ``proposal``, ``context``
+- read: ``selection`` (which rows), ``readings`` (numbers and intervals), ``words``, ``conditions``, ``uncertainty``,
+  ``values``, ``pivot`` (one quantity at several conditions), ``rejects``, ``subject`` (block and items)
+- given back: ``evidence`` brings all together (``work`` holds it meanwhile), ``document``, ``result``
 
 Nothing here writes, and nothing stops at the first bad cell: what cannot be read is a rejected cell (``LeftOut``) or a
 question, and a table with a question gives no evidence.

@@ -3,34 +3,44 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
 
-from specflow.importers.readers import Grid, Value
+from specflow.importers.readers import Grid, OddKind, Value
 
 Rows = NDArray[np.int32]
 Flags = NDArray[np.bool_]
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True)
 class ColumnCells:
     """Cells of rows ``first`` on; arrays of one length.
 
-    ``numbers`` float64 with NaN where there is no plain number; ``odd`` are the row numbers that hold something else;
-    ``filled`` says which cells hold anything, a formula without a value or an error included.
+    ``numbers`` float64 with NaN where there is no plain number; ``filled`` says which cells hold anything, a formula
+    without a value or an error included.
     """
 
     first: int
     values: list[Value]
     numbers: NDArray[np.float64]
-    odd: tuple[int, ...]
     filled: Flags
 
-    @property
+    @cached_property
     def numeric(self) -> Flags:
         """Which cells are plain numbers."""
         return ~np.isnan(self.numbers)
+
+    @cached_property
+    def odd(self) -> tuple[int, ...]:
+        """The numbers of the rows that hold something else than a plain number."""
+        return tuple((np.flatnonzero(self.filled & ~self.numeric) + self.first).tolist())
+
+    @cached_property
+    def distinct(self) -> frozenset[Value]:
+        """All values that occur."""
+        return frozenset(self.values)
 
     def value(self, row: int) -> Value:
         """The cell of one row."""
@@ -50,8 +60,21 @@ class ColumnCells:
 def read_column(grid: Grid, column: int, first: int, stop: int) -> ColumnCells:
     """Read the cells of ``column`` in rows ``first`` up to, not including, ``stop``."""
     values = grid.column(column, first, stop)
+    if not grid.is_text and set(map(type, values)) == {str}:
+        return _words(grid, column, values, first, stop)
     numbers, odd = grid.column_floats(column, first, stop)
     filled = ~np.isnan(numbers)
     if odd:
         filled[np.array(odd) - first] = True
-    return ColumnCells(first, values, numbers, tuple(odd), filled)
+    return ColumnCells(first, values, numbers, filled)
+
+
+def _words(grid: Grid, column: int, values: list[Value], first: int, stop: int) -> ColumnCells:
+    """A column of a workbook with no number in it: there is nothing to convert."""
+    filled = np.fromiter(
+        (not str(value).isspace() and value != "" for value in values), np.bool_, len(values)
+    )
+    for run in grid.odd.in_column(column, first, stop):
+        if run.cell.kind in (OddKind.ERROR, OddKind.NO_VALUE):
+            filled[max(run.first - first, 0) : run.last + 1 - first] = True
+    return ColumnCells(first, values, np.full(len(values), np.nan), filled)

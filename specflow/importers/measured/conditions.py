@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.importers.measured.cells import Rows
-from specflow.importers.measured.meaning import ColumnMeaning
+from specflow.importers.measured.column import ColumnMeaning
 from specflow.importers.measured.readings import read_numbers
 from specflow.importers.measured.rejects import Rejects
 from specflow.importers.measured.result import Question, Role
@@ -57,7 +57,7 @@ def read_conditions(
             blank = int(np.count_nonzero(np.isnan(values)))
         if blank:
             read.notes.append(
-                f"column {column_letter(meaning.column)} states no {name.replace('_', ' ')} in {blank} of {len(rows)} rows"
+                f"column {meaning.letter} states no {name.replace('_', ' ')} in {blank} of {len(rows)} rows"
                 + ("" if meaning.fill_down else "; fill_down = true in a mapping takes the cell above")
             )
         read.documents.append(_document(meaning, units.get(name, "")))

@@ -14,7 +14,22 @@ from specflow.importers.measured.tables import FoundTable
 from specflow.importers.readers import column_letter, is_blank, looks_numeric
 
 _OF_THE_TABLE = frozenset(
-    ["block", "method", "stage", "set_up", "performer", "procedure", "procedure_revision", "model", "model_version", "bandwidth", "spectrum", "plane", "statistic", "hardware"]
+    [
+        "block",
+        "method",
+        "stage",
+        "set_up",
+        "performer",
+        "procedure",
+        "procedure_revision",
+        "model",
+        "model_version",
+        "bandwidth",
+        "spectrum",
+        "plane",
+        "statistic",
+        "hardware",
+    ]
 )
 _MAY_VARY = frozenset(("performer", "hardware"))
 

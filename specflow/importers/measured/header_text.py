@@ -15,7 +15,23 @@ _COVERAGE = re.compile(r"[,;]?\s*[(\[]?\s*\bk\s*=\s*(?P<k>[0-9]+(?:[.,][0-9]+)?)
 _PLACE = re.compile(r"\s*@\s*(?P<place>.+)$")
 _TAIL = re.compile(r"^(?P<name>.*\S)\s+(?P<unit>°\s?[CFK]|[^\s\w]*d[Bb]\S*|\S*Hz|\S*[WVA]|%|deg\w*|K|ppm)$")
 _WORDS_NOT_UNITS = frozenset(
-    ["min", "in", "day", "year", "sample", "samples", "symbol", "symbols", "oct", "dec", "number", "none", "mil", "g", "t"]
+    [
+        "min",
+        "in",
+        "day",
+        "year",
+        "sample",
+        "samples",
+        "symbol",
+        "symbols",
+        "oct",
+        "dec",
+        "number",
+        "none",
+        "mil",
+        "g",
+        "t",
+    ]
 )
 
 

@@ -5,6 +5,7 @@ One file may hold several layouts (``[[table]]``); each is kept as a mapping of 
 
 from __future__ import annotations
 
+import re
 import tomllib
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field, fields
@@ -16,7 +17,7 @@ from specflow.importers.measured.result import Role
 
 FORMAT = 1
 
-ROLES = tuple(role.value for role in Role if role not in (Role.UNRESOLVED, Role.PIVOT))
+ROLES = tuple(role.value for role in Role if role not in (Role.UNRESOLVED, Role.PIVOT, Role.STATED))
 
 
 @dataclass(frozen=True, slots=True)
@@ -50,9 +51,10 @@ class ColumnMapping:
 
 @dataclass(frozen=True, slots=True)
 class PivotMapping:
-    """Columns that are one quantity at several conditions: ``header`` is a pattern like ``{polarisation} @ {frequency} MHz``.
+    """Columns that are one quantity at several conditions.
 
-    The names in braces are dimensions; ``units`` gives the unit of the numeric ones.
+    ``header`` is a pattern like ``{polarisation} @ {frequency} MHz``. The names in braces are dimensions; ``units``
+    gives the unit of the numeric ones.
     """
 
     header: str
@@ -64,6 +66,16 @@ class PivotMapping:
     polarisation: str = ""
     bandwidth: str = ""
     spectrum: str = ""
+
+    def pattern(self) -> re.Pattern[str]:
+        """Return the expression that the headers match; blanks do not matter."""
+        pieces = []
+        for piece in re.split(r"(\{\w+\})", " ".join(self.header.split())):
+            if re.fullmatch(r"\{\w+\}", piece):
+                pieces.append(f"(?P<{piece[1:-1]}>.+?)")
+            else:
+                pieces.append(re.escape(piece).replace(r"\ ", r"\s*"))
+        return re.compile("".join(pieces), re.IGNORECASE)
 
 
 @dataclass(frozen=True, slots=True)

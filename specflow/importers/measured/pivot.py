@@ -3,18 +3,22 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from specflow.conditions import Comparison, known_dimension
 from specflow.errors import UnitError
-from specflow.importers.measured.cells import Rows
-from specflow.importers.measured.mapping import PivotMapping
-from specflow.importers.measured.meaning import ColumnMeaning, pivot_pattern
-from specflow.importers.measured.result import Question
-from specflow.importers.readers import column_letter
+from specflow.importers.measured.column import ColumnMeaning, Heading
+from specflow.importers.measured.mapping import ColumnMapping, PivotMapping
+from specflow.importers.measured.result import Question, Role
+from specflow.importers.measured.uncertainty import Spread
+from specflow.importers.measured.unit_source import FoundUnit
+from specflow.importers.measured.value_column import mapped_value
+from specflow.importers.measured.values import column_numbers, value_document
+from specflow.importers.measured.work import TableWork
 from specflow.model.columns import Columns, TextColumn
+from specflow.model.evidence import SOURCE_COLUMN, ConditionColumn, EvidenceColumns, ValueArrays, ValueColumn
 from specflow.units import parse_number, parse_unit
 
 
@@ -26,56 +30,128 @@ class PivotConditions:
     text: dict[str, list[str]]
     units: dict[str, str]
 
+    def documents(self, pivot: PivotMapping) -> list[ConditionColumn]:
+        """The condition columns as documents."""
+        numeric = [
+            ConditionColumn(
+                dimension=name,
+                kind="numeric",
+                unit=self.units.get(name, ""),
+                header=pivot.header,
+                stated_by="header",
+            )
+            for name in self.numeric
+        ]
+        return numeric + [
+            ConditionColumn(dimension=name, kind="text", header=pivot.header, stated_by="header")
+            for name in self.text
+        ]
+
+
+@dataclass(frozen=True, slots=True)
+class Stacked:
+    """A table after stacking: its one value column, its arrays, and the conditions that headers gave."""
+
+    value: ValueColumn
+    columns: EvidenceColumns
+    conditions: list[ConditionColumn]
+
+
+def stack(work: TableWork, pivot: PivotMapping, columns: EvidenceColumns) -> Stacked | None:
+    """Put the pivot columns below each other; ``columns`` has what the rows themselves say. None with a question."""
+    pivoted = work.of(Role.PIVOT)
+    headers = read_pivot_headers(pivot, pivoted)
+    if isinstance(headers, Question):
+        work.questions.append(headers)
+        return None
+    if work.of(Role.VALUE):
+        work.ask(
+            "", work.table.place, "values beside the columns of the pivot", 'mark them role = "not read"'
+        )
+        return None
+    value = _value(work, pivot, pivoted[0])
+    if value is None:
+        return None
+    parts = [column_numbers(work, replace(one, unit=pivot.unit)) for one in pivoted]
+    low = np.concatenate([part.low for part in parts])
+    points = all(part.high is part.low for part in parts)
+    high = low if points else np.concatenate([part.high for part in parts])
+    count = len(pivoted)
+    letters = TextColumn.of([column.letter for column in pivoted])
+    extra = {name: _repeated(words, count) for name, words in columns.extra.items()}
+    extra[SOURCE_COLUMN] = TextColumn(np.repeat(letters.codes, len(work.rows)), letters.labels)
+    stacked = EvidenceColumns(
+        _stacked_conditions(columns.conditions, headers, count),
+        {value.name: ValueArrays(low, high)},
+        np.tile(work.rows, count),
+        _repeated(columns.items, count),
+        None if columns.dates is None else _repeated(columns.dates, count),
+        extra,
+    )
+    return Stacked(value, stacked, headers.documents(pivot))
+
 
 def read_pivot_headers(pivot: PivotMapping, columns: Sequence[ColumnMeaning]) -> PivotConditions | Question:
     """Read the conditions out of the headers; a header or a unit that cannot be read is a question."""
-    pattern = pivot_pattern(pivot.header)
+    pattern = pivot.pattern()
     read = PivotConditions({}, {}, {})
     for column in columns:
         match = pattern.fullmatch(column.header.text)
-        if match is None:
-            continue
-        for name, words in match.groupdict().items():
-            known = known_dimension(name)
-            is_text = name not in pivot.units and (known is None or known.comparison is Comparison.TEXT)
-            if is_text:
-                read.text.setdefault(name, []).append(" ".join(words.split()))
-                continue
-            try:
-                unit = parse_unit(pivot.units[name]) if name in pivot.units else None
-                read.numeric.setdefault(name, []).append(parse_number(words))
-            except UnitError as error:
-                return Question(
-                    column.header.text, column.header.cell, error.message, "mend the pattern of the pivot"
-                )
-            if unit is None and (known is None or known.unit):
-                remedy = f'write units = {{ {name} = "..." }} in the pivot'
-                return Question(column.header.text, column.header.cell, f"{name} without a unit", remedy)
-            if unit is not None:
-                read.units[name] = pivot.units[name]
+        for name, words in match.groupdict().items() if match else ():
+            problem = _take(read, pivot, name, " ".join(words.split()))
+            if problem:
+                return column.asks(problem, 'mend the pattern, or its units = { frequency = "MHz" }')
     return read
 
 
-def stack_conditions(rows: Columns, headers: PivotConditions, count: int) -> Columns:
+def _take(read: PivotConditions, pivot: PivotMapping, name: str, words: str) -> str:
+    """Add one condition of one column; the sentence that says why it cannot be read, "" when it can."""
+    known = known_dimension(name)
+    if name not in pivot.units and (known is None or known.comparison is Comparison.TEXT):
+        read.text.setdefault(name, []).append(words)
+        return ""
+    if name not in pivot.units and known is not None and known.unit:
+        return f"the pivot states no unit of {name}"
+    try:
+        if name in pivot.units:
+            parse_unit(pivot.units[name])
+            read.units[name] = pivot.units[name]
+        read.numeric.setdefault(name, []).append(parse_number(words))
+    except UnitError as error:
+        return error.message
+    return ""
+
+
+def _value(work: TableWork, pivot: PivotMapping, first: ColumnMeaning) -> ValueColumn | None:
+    hints = ColumnMapping(
+        plane=pivot.plane,
+        statistic=pivot.statistic,
+        polarisation=pivot.polarisation,
+        bandwidth=pivot.bandwidth,
+        spectrum=pivot.spectrum,
+    )
+    heading = Heading(work.table, first.header, first.parts, hints)
+    unit = FoundUnit(pivot.unit, "the mapping")
+    meaning = mapped_value(heading, pivot.parameter, unit, work.context, work.stated)
+    if meaning.question is not None:
+        work.questions.append(meaning.question)
+        return None
+    return value_document(meaning, pivot.parameter, Spread()).model_copy(update={"header": pivot.header})
+
+
+def _stacked_conditions(rows: Columns, headers: PivotConditions, count: int) -> Columns:
     """Repeat the conditions of the rows for each of ``count`` columns, and add what the headers say."""
     size = rows.size
     numeric = {name: np.tile(values, count) for name, values in rows.numeric.items()}
-    text = {name: stack_words(words, count) for name, words in rows.text.items()}
     numeric |= {
         name: np.repeat(np.array(values, np.float64), size) for name, values in headers.numeric.items()
     }
+    text = {name: _repeated(words, count) for name, words in rows.text.items()}
     for name, words in headers.text.items():
         one = TextColumn.of(words)
         text[name] = TextColumn(np.repeat(one.codes, size), one.labels)
     return Columns(size * count, numeric, text, {**rows.units, **headers.units})
 
 
-def stack_words(words: TextColumn, count: int) -> TextColumn:
-    """Repeat a column of words."""
+def _repeated(words: TextColumn, count: int) -> TextColumn:
     return TextColumn(np.tile(words.codes, count), words.labels)
-
-
-def source_columns(columns: Sequence[ColumnMeaning], rows: Rows) -> TextColumn:
-    """The letter of the column that each stacked value stands in."""
-    letters = TextColumn.of([column_letter(column.column) for column in columns])
-    return TextColumn(np.repeat(letters.codes, len(rows)), letters.labels)

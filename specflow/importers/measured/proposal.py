@@ -5,9 +5,9 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import replace
 
+from specflow.importers.measured.column import ColumnMeaning
 from specflow.importers.measured.layout import sheet_pattern
 from specflow.importers.measured.mapping import FORMAT, ColumnMapping, LayoutMapping, write_mapping
-from specflow.importers.measured.meaning import ColumnMeaning
 from specflow.importers.measured.result import Role
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.readers import column_letter
@@ -16,7 +16,8 @@ from specflow.model.evidence import SpectrumKind
 HEAD = f"""# A mapping of measurement tables: how the columns of each layout are to be read.
 # A layout is recognised by its headers, their units and their order, not by the name of the file.
 # role: value, condition, item, uncertainty, date, requirement, stated limit, stated verdict, index, remark, not read
-# value:       parameter, unit; plane, statistic, polarisation, bandwidth = "1 MHz", spectrum = "noise-like" or "discrete"
+# value:       parameter, unit; plane, statistic, polarisation, bandwidth = "1 MHz",
+#              spectrum = "noise-like" or "discrete"
 # condition:   dimension, unit; fill_down = true where a blank cell means the one above
 # uncertainty: unit, k = 2 (1: a standard uncertainty), of = "header of the values"
 # table:       block, method, stage; [table.stated] for conditions that hold for all rows; header_rows = 2;

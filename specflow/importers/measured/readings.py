@@ -75,7 +75,8 @@ def _apply_formats(
             example = float(numbers.low[percent][0])
             numbers.low = numbers.high = low
             numbers.notes.append(
-                f"percent format: {example:g} is shown as {example * 100:.12g} % and read so ({int(percent.sum())} cells)"
+                f"percent format: {example:g} is shown as {example * 100:.12g} % and read so, "
+                f"{int(percent.sum())} cells"
             )
     for run in runs:
         if run.cell.kind is OddKind.PERCENT:

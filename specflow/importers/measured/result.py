@@ -1,4 +1,4 @@
-"""What reading a measurement file gives: tables, how each column was understood, what was rejected and what is asked."""
+"""What reading a measurement file gives: tables, how each column was understood, what is rejected or asked."""
 
 from __future__ import annotations
 
@@ -24,6 +24,7 @@ class Role(StrEnum):
     STATED_VERDICT = "stated verdict"
     INDEX = "index"
     REMARK = "remark"
+    STATED = "stated"
     NOT_READ = "not read"
     PIVOT = "pivot"
     UNRESOLVED = "unresolved"

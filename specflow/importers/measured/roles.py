@@ -3,41 +3,67 @@
 from __future__ import annotations
 
 import re
+from dataclasses import dataclass
 
 from specflow.importers.measured.header_text import HeaderText
 from specflow.importers.measured.result import Role
 
-_EXACT: dict[Role, str] = {
-    Role.ITEM: "item | item id | item no | dut | dut id | dut sn | uut | uut sn | device | device id | serial | serial no | "
-    "serial number | serial nr | s/n | sn | specimen | specimen id | sample | sample id | unit | unit id | unit no | "
-    "unit sn | eut | board | board sn | module sn | item serial | hardware item",
-    Role.DATE: "date | test date | measurement date | measured on | date of test | timestamp | time stamp | date/time | "
-    "datetime | date time | performed on | date measured",
-    Role.INDEX: "# | no | no. | nr | nr. | run | run no | run # | index | idx | row | point | pt | point no | meas no | "
-    "measurement no | seq | sequence | line | record | record no | test no | meas # | test # | step",
-    Role.STATED_VERDICT: "pass/fail | pass / fail | p/f | verdict | result | pass | fail | ok | ok? | status | compliant | "
-    "compliance | go/no go | judgement | conclusion | pass or fail | assessment",
-    Role.REMARK: "comment | comments | remark | remarks | note | notes | observation | observations | file | filename | "
-    "file name | plot | screenshot | trace file | data file | description | instrument | equipment | analyser",
-    Role.REQUIREMENT: "requirement | requirement id | req | req id | req. | req no | requirement no | spec id | "
-    "specification id | rid",
-}  # fmt: skip
+_NAMES: dict[Role, tuple[str, ...]] = {
+    Role.ITEM: (
+        "item | item id | item no | item serial | hardware item | dut | dut id | dut sn | uut | uut sn | device",
+        "device id | serial | serial no | serial number | serial nr | s/n | sn | specimen | specimen id | sample",
+        "sample id | unit | unit id | unit no | unit sn | eut | board | board sn | module sn",
+    ),
+    Role.DATE: (
+        "date | test date | measurement date | measured on | date of test | timestamp | time stamp | date/time",
+        "datetime | date time | performed on | date measured",
+    ),
+    Role.INDEX: (
+        "# | no | no. | nr | nr. | run | run no | run # | index | idx | row | point | pt | point no | meas no",
+        "measurement no | seq | sequence | line | record | record no | test no | meas # | test # | step",
+    ),
+    Role.STATED_VERDICT: (
+        "pass/fail | pass / fail | p/f | verdict | result | pass | fail | ok | ok? | status | compliant",
+        "compliance | go/no go | judgement | conclusion | pass or fail | assessment",
+    ),
+    Role.REMARK: (
+        "comment | comments | remark | remarks | note | notes | observation | observations | file | filename",
+        "file name | plot | screenshot | trace file | data file | description | instrument | equipment | analyser",
+    ),
+    Role.REQUIREMENT: (
+        "requirement | requirement id | req | req id | req. | req no | requirement no | spec id",
+        "specification id | rid",
+    ),
+}
 
 
 def _plain(text: str) -> str:
     return re.sub(r"[\s_.]+", "", text.casefold())
 
 
-_ROLES = {_plain(word): role for role, words in _EXACT.items() for word in words.split(" | ")}
-_LIMIT_WORDS = frozenset(
-    ["limit", "limits", "spec", "specification", "lsl", "usl", "threshold", "requirement", "target", "goal", "lower_limit"]
+_ROLES = {
+    _plain(word): role for role, lines in _NAMES.items() for line in lines for word in line.split(" | ")
+}
+_LIMIT = re.compile(r"\b(?:limits?|spec|specification|lsl|usl|threshold|requirement|target|goal)\b")
+_MARGIN = re.compile(r"\b(?:margin|headroom)\b")
+_WORDS = (
+    r"(?:expanded |standard |meas\w*\.? )?unc(?:ert(?:ainty|\.)?|\.)?|std\.? unc\w*|measurement uncertainty"
 )
-_MARGIN_WORDS = frozenset(["margin", "headroom"])
 _UNCERTAINTY = re.compile(
-    r"^(?:(?P<of>.*?)[\s_]*)(?:\b(?P<letter>[Uu])(?![a-z])|(?P<sign>±|\+/-)|\b(?P<word>(?:expanded |standard |meas\w*\.? )?unc(?:ert(?:ainty|\.)?|\.)?|"
-    r"std\.? unc\w*|mu))\s*(?P<rest>(?:\(.*\))?\s*(?:of|for)?\s*(?P<of_after>.*))$",
+    rf"^(?:(?P<of>.*?)[\s_]*)(?:\b(?P<letter>u)|(?P<sign>±|\+/-)|\b(?P<word>{_WORDS}))\b"
+    r"\s*(?:(?:of|for)\s+|\(\s*)?(?P<of_after>[^()]*)\)?$",
     re.IGNORECASE,
 )
+_BARE_SIGN = re.compile(r"^(?P<of>.*?)\s*(?:±|\+/-)\s*$")
+
+
+@dataclass(frozen=True, slots=True)
+class UncertaintyWords:
+    """What a header says of an uncertainty: of which quantity ("" unsaid), a standard one, or a bare ± sign."""
+
+    of: str
+    is_standard: bool
+    is_bare: bool
 
 
 def role_of_words(parts: HeaderText) -> tuple[Role, str] | None:
@@ -47,42 +73,29 @@ def role_of_words(parts: HeaderText) -> tuple[Role, str] | None:
         return role, f"the header {parts.text!r} names a column of this kind"
     if role is Role.STATED_VERDICT:
         return None
-    words = set(re.findall(r"[a-z]+", parts.name.casefold()))
-    if words & _LIMIT_WORDS:
+    words = parts.name.casefold().replace("_", " ")
+    if _LIMIT.search(words):
         return Role.STATED_LIMIT, "a limit as the source states it; limits are judged from the requirements"
-    if words & _MARGIN_WORDS:
+    if _MARGIN.search(words):
         return Role.STATED_LIMIT, "a margin as the source states it; margins are computed"
-    if {"delta", "limit"} <= words:
-        return Role.STATED_LIMIT, "a distance to a limit as the source states it"
     return None
 
 
-def is_known(parts: HeaderText) -> bool:
-    """Whether the words of a header name a role."""
-    return role_of_words(parts) is not None or uncertainty_of(parts) is not None
+def uncertainty_of(parts: HeaderText) -> UncertaintyWords | None:
+    """Return what a header says of an uncertainty; None for any other header.
 
-
-def uncertainty_of(parts: HeaderText) -> tuple[str, bool, bool] | None:
-    """Return (what the uncertainty is of, is it a standard one, is it a bare ±) for a header of uncertainties.
-
-    "U (dB), k=2", "u(Gain)", "± dB", "Expanded uncertainty", "Gain uncertainty (dB)"; None for any other header.
+    "U (dB), k=2", "u(Gain)", "± dB", "Expanded uncertainty", "Gain uncertainty (dB)", "U Gain (dB)".
     """
     name = parts.name or parts.text
+    sign = _BARE_SIGN.match(name)
+    if sign is not None:
+        return UncertaintyWords(sign["of"].strip(" ,;:-"), False, True)
     found = _UNCERTAINTY.match(name)
-    if found is None or (found["letter"] and not _is_letter(found)):
+    if found is None or (found["letter"] and found["of"] and found["of_after"]):
         return None
-    of = (found["of"] or "").strip(" ,;:-") or (found["of_after"] or "").strip(" ,;:-()")
+    of = found["of"].strip(" ,;:-") or found["of_after"].strip(" ,;:-")
     if not of and parts.bracketed:
         of = parts.bracketed[0]
     word = (found["word"] or "").casefold()
     standard = found["letter"] == "u" or "standard" in word or word.startswith("std")
-    return of, standard, bool(found["sign"])
-
-
-def _is_letter(found: re.Match[str]) -> bool:
-    """A lone u or U, perhaps behind the name of a quantity; not the last letter of a word, nor U1."""
-    return (
-        not found["rest"].strip()
-        or found["rest"].lstrip()[:1] == "("
-        or found["rest"].startswith((" of", " for", "of ", "for "))
-    )
+    return UncertaintyWords(of, standard, False)

@@ -8,15 +8,51 @@ from collections.abc import Sequence
 import numpy as np
 
 from specflow.importers.measured.cells import Rows
+from specflow.importers.measured.column import ColumnMeaning
 from specflow.importers.measured.mapping import LayoutMapping
-from specflow.importers.measured.meaning import ColumnMeaning
 from specflow.importers.measured.rejects import Rejected, Rejects, cell_text
 from specflow.importers.measured.result import Role
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.readers import is_blank
 
 _SUMMARY = frozenset(
-    ["mean", "average", "avg", "max", "maximum", "min", "minimum", "median", "worst", "best", "std", "stdev", "std.dev", "sd", "sigma", "total", "sum", "subtotal", "worst-case", "spread", "range", "count", "p-p", "mittelwert", "limit", "limits", "spec", "specification", "requirement", "target", "lsl", "usl", "upper", "lower", "tolerance"]
+    [
+        "mean",
+        "average",
+        "avg",
+        "max",
+        "maximum",
+        "min",
+        "minimum",
+        "median",
+        "worst",
+        "best",
+        "std",
+        "stdev",
+        "std.dev",
+        "sd",
+        "sigma",
+        "total",
+        "sum",
+        "subtotal",
+        "worst-case",
+        "spread",
+        "range",
+        "count",
+        "p-p",
+        "mittelwert",
+        "limit",
+        "limits",
+        "spec",
+        "specification",
+        "requirement",
+        "target",
+        "lsl",
+        "usl",
+        "upper",
+        "lower",
+        "tolerance",
+    ]
 )
 _SUMMARY_PHRASES = (
     "std dev",
@@ -64,14 +100,15 @@ def _reject(table: FoundTable, rows: Rows, reason: str, rejects: Rejects) -> Non
 
 def _summary_rows(table: FoundTable, meanings: Sequence[ColumnMeaning], rows: Rows) -> list[int]:
     """Rows whose first filled cell is a word like "Mean", unless it stands among words of its column."""
-    wanted = set(rows.tolist())
+    wanted = frozenset(rows.tolist())
     found: list[int] = []
     before: list[ColumnMeaning] = []
     for meaning in meanings:
         cells = table.cells(meaning.column)
-        for row in cells.odd:
-            value = cells.value(row)
-            if row in wanted and isinstance(value, str) and _is_summary(value):
+        texts = cells.distinct if cells.odd else ()
+        words = {text for text in texts if isinstance(text, str) and _is_summary(text)}
+        for row in cells.odd if words else ():
+            if row in wanted and cells.value(row) in words:
                 first = all(is_blank(table.grid.value(row, one.column)) for one in before)
                 if first and not _is_a_setting(table, meaning, meanings, row):
                     found.append(row)

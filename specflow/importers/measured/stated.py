@@ -184,7 +184,7 @@ def _take(stated: Stated, key: str, text: str, by: str, cell: str) -> None:
         stated.uncertainty_keys[key] = Said(text, by, key)
     elif is_unlocated_temperature(read_header(key).name):
         _take_temperature(stated, key, text, by, cell)
-    elif by == PERSON or by == MAPPING:
+    elif by in (PERSON, MAPPING):
         stated.conditions.setdefault(key, StatedCondition(key, text, "", by))
         stated.readings.append(ColumnReading(key, cell, Role.CONDITION, f"{key} = {text}", by))
     else:
@@ -200,7 +200,7 @@ def _take_name(stated: Stated, name: str, key: str, text: str, by: str, cell: st
     if not _is_new(stated, stated.said.get(name), key, text, by, cell):
         return
     stated.said[name] = Said(text, by, key)
-    stated.readings.append(ColumnReading(key, cell, Role.REMARK, f"{name.replace('_', ' ')}: {text}", by))
+    stated.readings.append(ColumnReading(key, cell, Role.STATED, f"{name.replace('_', ' ')}: {text}", by))
 
 
 def _is_new(stated: Stated, known: Said | None, key: str, text: str, by: str, cell: str) -> bool:
@@ -286,4 +286,4 @@ def _take_calibration(stated: Stated, asset: str, text: str, by: str, cell: str,
         )
         return
     stated.equipment.append(Equipment(asset=asset, calibration_due=due))
-    stated.readings.append(ColumnReading(key, cell, Role.REMARK, f"{asset}, calibrated until {due}", by))
+    stated.readings.append(ColumnReading(key, cell, Role.STATED, f"{asset}, calibrated until {due}", by))

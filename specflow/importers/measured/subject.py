@@ -6,7 +6,7 @@ import re
 from collections.abc import Sequence
 from difflib import get_close_matches
 
-from specflow.importers.measured.meaning import Context
+from specflow.importers.measured.context import Context
 from specflow.importers.measured.result import Question
 from specflow.importers.measured.stated import Stated
 from specflow.importers.measured.tables import FoundTable
@@ -21,7 +21,7 @@ _LEADING_WORD = re.compile(r"^(?:s/?n|serial(?: (?:no|number)\.?)?|#)[\s:#.\-]*(
 def find_block(
     table: FoundTable, context: Context, stated: Stated, items: TextColumn
 ) -> tuple[Block | None, str, Question | None]:
-    """Return (block, where that is from, question): as stated, by the items, by the requirement, or by the sheet name."""
+    """Return (block, where that is from, question): as stated, else by items, requirement or sheet name."""
     snapshot = context.snapshot
     said = stated.text("block")
     if said:

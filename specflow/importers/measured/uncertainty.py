@@ -15,7 +15,7 @@ from numpy.typing import NDArray
 
 from specflow.errors import UnitError
 from specflow.importers.measured.cells import Rows
-from specflow.importers.measured.meaning import ColumnMeaning
+from specflow.importers.measured.column import ColumnMeaning
 from specflow.importers.measured.readings import read_numbers
 from specflow.importers.measured.rejects import Rejects
 from specflow.importers.measured.result import Question
@@ -45,7 +45,7 @@ _STATED = re.compile(
 
 @dataclass
 class Spread:
-    """u of one value column: float64 with NaN where none is known, or None; where it is from; the k it was divided by."""
+    """u of one value column: float64 (NaN where unknown) or None; where it is from; the k it was divided by."""
 
     u: Floats | None = None
     source: str = ""
@@ -93,8 +93,7 @@ def in_tolerance_unit(spread: Floats, written: Unit, value_unit: Unit, low: Floa
         and unit.kind is wanted.kind
         and unit.dimension == wanted.dimension
     ):
-        if unit.dimension != "ratio" or value_unit.dimension == "ratio":
-            return converter(unit, wanted, difference=True)(spread), why
+        return converter(unit, wanted, difference=True)(spread), why
     if unit.dimension == "ratio" and not unit.is_log:
         return np.abs(low) * spread * unit.scale, f"{written} of the value"
     raise UnitError(
@@ -129,7 +128,7 @@ def from_statement(said: Said, value: ColumnMeaning, low: Floats) -> Spread:
 def from_register(
     entries: Sequence[UncertaintyEntry], set_up: str, value: ColumnMeaning, low: Floats, conditions: Columns
 ) -> Spread:
-    """Look up the project's register by set-up, parameter, frequency and level; of several lines the greatest u holds."""
+    """Look up the register by set-up, parameter, frequency and level; of several lines the greatest u holds."""
     parameter = value.quantity.parameter if value.quantity else ""
     mine = [
         entry

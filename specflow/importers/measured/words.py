@@ -18,7 +18,12 @@ _NOTHING = frozenset(("", "-", "—", "–", "n/a", "N/A", "na", "NA"))
 
 def read_words(table: FoundTable, column: int, rows: Rows, rejects: Rejects | None = None) -> TextColumn:
     """Read a column as words; dashes are nothing. Error cells are rejected where ``rejects`` is given."""
-    words = [_word(value) for value in table.cells(column).at(rows)]
+    cells = table.cells(column)
+    if bool in set(map(type, cells.distinct)):  # True is 1 to a dictionary
+        words = [_word(value) for value in cells.at(rows)]
+    else:
+        spelled = {value: _word(value) for value in cells.distinct}
+        words = [spelled[value] for value in cells.at(rows)]
     if rejects is not None:
         for run in table.grid.odd.in_column(column, table.first_row, table.stop_row):
             if run.cell.kind in (OddKind.ERROR, OddKind.NO_VALUE):

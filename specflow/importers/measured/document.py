@@ -1,0 +1,128 @@
+"""The document of an evidence table, its key and its digest."""
+
+from __future__ import annotations
+
+import hashlib
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+from pydantic import ValidationError
+
+from specflow.exchange import digest
+from specflow.importers.measured.rejects import cell_text
+from specflow.importers.measured.result import Role
+from specflow.importers.measured.work import TableWork
+from specflow.model.block import Block
+from specflow.model.evidence import ConditionColumn, EvidenceColumns, EvidenceTable, ValueColumn
+from specflow.model.requirement import Method, Requirement, Stage
+
+PROVISIONAL_TABLE, PROVISIONAL_FILE = "EV-0", "F-0"
+
+_NOT_CONTENT = {"id", "file", "digest", "mapping", "mapping_revision", "accepted_by", "accepted_at", "provisional",
+                "revision", "left_out", "title", "sheet"}  # fmt: skip
+
+
+@dataclass(frozen=True, slots=True)
+class Identity:
+    """What a table is of, and where it stands."""
+
+    block: Block
+    method: Method
+    stage: Stage
+    layout_key: str
+    title: str
+    sheet: str
+
+
+def make_document(
+    work: TableWork,
+    identity: Identity,
+    values: Sequence[ValueColumn],
+    conditions: Sequence[ConditionColumn],
+    columns: EvidenceColumns,
+) -> EvidenceTable | None:
+    """Return the document of a table with provisional ids; None, and a question, when something stated does not fit."""
+    stated = work.stated
+    try:
+        document = EvidenceTable(
+            id=PROVISIONAL_TABLE,
+            file=PROVISIONAL_FILE,
+            sheet=identity.sheet,
+            title=identity.title[:200],
+            block=identity.block.id,
+            requirement=_requirement(work),
+            method=identity.method,
+            stage=identity.stage,
+            rows=columns.conditions.size,
+            values=tuple(values),
+            conditions=tuple(conditions),
+            table_key=_table_key(work, identity),
+            set_up=stated.text("set_up"),
+            performer=stated.text("performer"),
+            procedure=stated.text("procedure"),
+            procedure_revision=stated.text("procedure_revision"),
+            performed_on=stated.day("date"),
+            equipment=tuple(stated.equipment),
+            corrections=tuple(filter(None, [stated.text("corrections")])),
+            simulation_model=stated.text("model"),
+            simulation_version=stated.text("model_version"),
+            simulation_validated=stated.text("validated"),
+            hardware_note=stated.text("hardware"),
+            left_out=work.rejects.left_out(),
+        )
+    except ValidationError as error:
+        fault = error.errors()[0]
+        what = f"{'.'.join(map(str, fault['loc']))}: {fault['msg']}"
+        work.ask("", "", what, "correct what is stated for the table")
+        return None
+    return document.model_copy(update={"digest": content_digest(document, columns)})
+
+
+def content_digest(table: EvidenceTable, columns: EvidenceColumns) -> str:
+    """Return the digest of what a table says: values, uncertainties, conditions, items, and what they mean."""
+    told = table.model_dump(mode="json", exclude=_NOT_CONTENT)
+    words = [text for _, text in sorted(columns.conditions.text.items())]
+    told["labels"] = [columns.items.labels, *(text.labels for text in words)]
+    if columns.dates is not None:
+        words.append(columns.dates)
+        told["dates"] = columns.dates.labels
+    arrays: list[NDArray[Any]] = [columns.source_rows, columns.items.codes, *(text.codes for text in words)]
+    arrays += [array for _, array in sorted(columns.conditions.numeric.items())]
+    for _, value in sorted(columns.values.items()):
+        arrays += [value.low, value.high] + ([] if value.u is None else [value.u])
+    sums = hashlib.sha256(digest(told).encode())
+    for array in arrays:
+        sums.update(np.ascontiguousarray(array).data)
+    return sums.hexdigest()
+
+
+def _table_key(work: TableWork, identity: Identity) -> str:
+    """What says that a later table is the same one again: layout, sheet, block, and who measured it on which set-up."""
+    parts = [identity.sheet, identity.block.id, work.stated.text("set_up"), work.stated.text("performer")]
+    return "T-" + digest([identity.layout_key, *(part.casefold() for part in parts)])[:16]
+
+
+def _requirement(work: TableWork) -> str | None:
+    """The requirement that the table names, by statement or in a column that says the same in all rows."""
+    text = work.stated.text("requirement")
+    columns = work.of(Role.REQUIREMENT)
+    if not text and columns:
+        words = {cell_text(value).strip() for value in work.table.cells(columns[0].column).at(work.rows)} - {
+            ""
+        }
+        text = words.pop() if len(words) == 1 else ""
+    if not text:
+        return None
+    requirement = work.context.snapshot.find(Requirement, text)
+    if requirement is None:
+        work.notes.append(f"the requirement {text!r} is not known; the values are matched without it")
+        return None
+    keys = {meaning.quantity.parameter for meaning in work.of(Role.VALUE) if meaning.quantity}
+    if keys and requirement.quantity.parameter not in keys:
+        work.notes.append(
+            f"{requirement.id} is on {requirement.quantity.parameter}, the table has {', '.join(sorted(keys))}"
+        )
+    return requirement.id

@@ -1,0 +1,131 @@
+"""A column of values: its quantity, its unit, and whether the two fit each other."""
+
+from __future__ import annotations
+
+from specflow.errors import UnitError
+from specflow.importers.measured.column import ColumnMeaning, Heading
+from specflow.importers.measured.context import Context
+from specflow.importers.measured.quantity_text import NamedQuantity, density_of
+from specflow.importers.measured.result import Role
+from specflow.importers.measured.stated import Stated
+from specflow.importers.measured.unit_source import FoundUnit
+from specflow.model.evidence import SpectrumKind
+from specflow.model.parameter import Parameter, QuantityIdentity
+from specflow.parameters import suits
+from specflow.units import ONE, Kind, parse_quantity, parse_unit
+
+
+def named_value(
+    heading: Heading, named: NamedQuantity, unit: FoundUnit, context: Context, stated: Stated
+) -> ColumnMeaning:
+    """Read a column whose header names a parameter."""
+    if len(named.candidates) > 1:
+        return heading.ask_parameter(
+            f"may be any of {', '.join(one.parameter.key for one in named.candidates)}"
+        )
+    if named.doubt:
+        return heading.ask(named.doubt, named.remedy)
+    found = named.candidates[0]
+    reason = f"the header is the {found.reason}"
+    return value_of(heading, found.parameter, named, unit, context, stated, reason)
+
+
+def mapped_value(
+    heading: Heading, key: str, unit: FoundUnit, context: Context, stated: Stated
+) -> ColumnMeaning:
+    """Read a column of which a mapping, or the person, names the parameter."""
+    parameter = context.dictionary.get(key)
+    if parameter is None:
+        near = ", ".join(one.key for one in context.dictionary.suggest(key))
+        remedy = f"nearest: {near}" if near else "add it to the parameters of the project"
+        return heading.ask(f"the mapping names {key!r}, which is no known parameter", remedy)
+    return value_of(heading, parameter, NamedQuantity(), unit, context, stated, "the mapping")
+
+
+def value_of(
+    heading: Heading,
+    parameter: Parameter,
+    named: NamedQuantity,
+    unit: FoundUnit,
+    context: Context,
+    stated: Stated,
+    reason: str,
+) -> ColumnMeaning:
+    """Read a column of values of ``parameter``; a unit that is missing or of another kind is a question."""
+    if not unit.unit and not unit.problem:
+        unit = _stated_unit(parameter, stated)
+    if not unit.unit:
+        return heading.ask_unit(unit.problem or f"{parameter.title} without a unit", parameter.unit)
+    density = density_of(parameter, unit.unit, context.dictionary)
+    if density is not None:
+        parameter, reason = density, f"{reason}, in {unit.unit} its density"
+    if not suits(parameter, unit.unit):
+        what = (
+            f"{parameter.title} in {unit.unit}; {_with_article(parameter.title)} is {_kind_words(parameter)}"
+        )
+        return heading.ask(what, "correct the header, or settle parameter and unit in a mapping")
+    try:
+        bandwidth = _bandwidth(heading, parameter, unit.unit, stated)
+    except UnitError as error:
+        return heading.ask(error.message, 'write it with its unit: bandwidth = "1 MHz"')
+    quantity = QuantityIdentity(
+        parameter=parameter.key,
+        plane=heading.hints.plane or named.plane or stated.text("plane"),
+        statistic=heading.hints.statistic or named.statistic or stated.text("statistic"),
+        bandwidth_hz=bandwidth,
+        polarisation=heading.hints.polarisation or named.polarisation,
+    )
+    return ColumnMeaning(
+        heading.header,
+        heading.parts,
+        Role.VALUE,
+        f"{reason}; unit from {unit.source}",
+        parameter=parameter,
+        quantity=quantity,
+        unit=unit.unit,
+        unit_from=unit.source,
+        spectrum=_spectrum(heading.hints.spectrum or stated.text("spectrum")),
+    )
+
+
+def _stated_unit(parameter: Parameter, stated: Stated) -> FoundUnit:
+    """The unit that is stated for the table; a parameter that is a plain number needs none."""
+    if stated.text("unit"):
+        try:
+            parse_unit(stated.text("unit"))
+        except UnitError as error:
+            return FoundUnit(problem=f"{error.message}, {stated.by('unit')}")
+        return FoundUnit(stated.text("unit"), stated.by("unit"))
+    if parse_unit(parameter.unit) == ONE:
+        return FoundUnit("1", f"the parameter: {parameter.title} is a plain number")
+    return FoundUnit()
+
+
+def _bandwidth(heading: Heading, parameter: Parameter, unit: str, stated: Stated) -> float | None:
+    """The reference bandwidth in Hz: of a density from its unit, else as stated for a quantity that needs one."""
+    own = parse_unit(unit).bandwidth_hz
+    text = heading.hints.bandwidth
+    if not text and own is None and parameter.needs_bandwidth:
+        text = stated.text("bandwidth")
+    if not text:
+        return own
+    amount = parse_quantity(text)
+    if amount.unit.dimension != "frequency":
+        raise UnitError(f"the bandwidth {text!r} is no frequency")
+    return float(amount.value) * amount.unit.scale
+
+
+def _spectrum(text: str) -> SpectrumKind:
+    plain = text.casefold().replace(" ", "-")
+    return next((kind for kind in SpectrumKind if kind.value == plain), SpectrumKind.UNKNOWN)
+
+
+def _with_article(title: str) -> str:
+    spoken = title if title[:2].isupper() else title[:1].lower() + title[1:]
+    return f"{'an' if spoken[:1].casefold() in 'aeio' else 'a'} {spoken}"
+
+
+def _kind_words(parameter: Parameter) -> str:
+    unit = parse_unit(parameter.unit)
+    what = unit.dimension if unit.kind in (Kind.PHYSICAL, Kind.PHYSICAL_LOG) else unit.kind.value
+    return f"{'an' if what[0] in 'aeio' else 'a'} {what} ({parameter.unit})"
