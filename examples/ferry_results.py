@@ -340,6 +340,6 @@ def _pattern(frequency: float, theta: float) -> float:
 def _figure_of_merit() -> Iterator[list[Any]]:
     for frequency in RECEIVE:
         for ambient in AMBIENT:
-            gain = 28.0 + 20 * math.log10(frequency / 18.95)
-            noise = 10 * math.log10(250 + 0.7 * (ambient - 23))
-            yield [frequency, ambient, round(gain - noise + 1.1, 2)]
+            gain = 28.4 + 20 * math.log10(frequency / 18.95)
+            noise = 10 * math.log10(220 + 0.7 * (ambient - 23))
+            yield [frequency, ambient, round(gain - noise, 2)]
