@@ -115,12 +115,17 @@ def lay_ground(requirement: Requirement, member: Member, points: Points, workspa
     """Gather the records of one limit, match and judge them."""
     records = workspace.records(requirement, member.want)
     conditions = workspace.conditions_of(requirement, records)
-    matching = workspace.matching(points, conditions)
-    served = readings_of(records, *serving(records, matching))
+    matched = workspace.matching(points, conditions)
+    served = readings_of(records, *serving(records, matched.record, matched.point))
     judging = Judging(requirement, member.limit, points, records, conditions, workspace)
     readings, together = judging.readings(served)
     return Ground(
-        points, matching, records, readings, _nothing_required(member.limit, points, workspace), together
+        points,
+        matched.matching,
+        records,
+        readings,
+        _nothing_required(member.limit, points, workspace),
+        together,
     )
 
 
@@ -128,7 +133,7 @@ def _nothing_required(limit: Limit, points: Points, workspace: Workspace) -> NDA
     """Return the points at which the limit asks for nothing, whatever is recorded; None where it always asks."""
     if is_plain(limit) or (not tree_names(limit.tree) and limit.tree.kind != "no_limit"):
         return None
-    every = np.arange(points.size, dtype=np.int32)
+    every = np.arange(points.size)
     columns = limit_columns(limit, points, None, every, every)
     bounds = evaluate_limit(limit, LimitContext(columns, workspace.declared, points.size))
     nothing = ~bounds.applies & ~bounds.unknown

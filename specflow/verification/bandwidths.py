@@ -26,7 +26,7 @@ def states_bandwidth(limit: Limit) -> bool:
 
 
 def in_bandwidth_of_limit(
-    records: Records, record: NDArray[np.int32], low: Floats, high: Floats, bandwidth_hz: Floats | None
+    records: Records, record: NDArray[np.intp], low: Floats, high: Floats, bandwidth_hz: Floats | None
 ) -> tuple[Floats, Floats, NDArray[np.bool_]]:
     """Return readings in the bandwidth of the limit, and where that cannot be done because a record states none.
 

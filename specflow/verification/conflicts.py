@@ -56,7 +56,7 @@ def _suspicious(bench: Bench, allowed: Floats) -> Iterator[NDArray[np.intp]]:
     √(U1² + U2²) is at least (U1 + U2)/√2, so intervals of U/√2 that all overlap hold no conflict.
     """
     readings, records = bench.readings, bench.records
-    cell = records.item[readings.record].astype(np.intp) * bench.points.size + readings.point
+    cell = records.item[readings.record] * bench.points.size + readings.point
     cells = len(records.items) * bench.points.size
     if bench.matching.along is not None:
         cell, cells = _along_range(bench, cell)

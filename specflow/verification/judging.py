@@ -93,7 +93,7 @@ class Judging:
         return forgiven(readings, relaxed, groups, lambda count: node.count)
 
     def _allowed(
-        self, readings: Readings, served: Served, allowance: Allowance, item: NDArray[np.int32]
+        self, readings: Readings, served: Served, allowance: Allowance, item: NDArray[np.intp]
     ) -> Readings:
         """Let a share of the samples of each point exceed the limit by the excess."""
         share = allowance.share.value / (100 if allowance.share.unit == "%" else 1)
@@ -106,7 +106,7 @@ class Judging:
             readings, relaxed, self._groups(served, item), lambda count: int(share * count + 1e-9)
         )
 
-    def _groups(self, served: Served, item: NDArray[np.int32] | None) -> NDArray[np.intp]:
+    def _groups(self, served: Served, item: NDArray[np.intp] | None) -> NDArray[np.intp]:
         if item is None:
             return served.point.astype(np.intp)
         return served.point.astype(np.intp) * len(self.records.items) + item[served.record]

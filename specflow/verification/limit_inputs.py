@@ -11,7 +11,7 @@ from specflow.model.columns import Columns, TextColumn
 from specflow.model.expression import Negative, Number
 from specflow.model.limit import Between, Bound, Limit
 
-Rows = NDArray[np.int32]
+Rows = NDArray[np.intp]
 
 
 def is_plain(limit: Limit) -> bool:

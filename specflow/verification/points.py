@@ -128,7 +128,7 @@ def _by_item(bench: Bench, together: bool) -> tuple[Sequence[str], Rows | None, 
     if together:
         return (ALL_ITEMS,), None, np.zeros(bench.readings.size, np.intp)
     names = bench.records.items
-    item = bench.records.item[bench.readings.record].astype(np.intp)
+    item = bench.records.item[bench.readings.record]
     if len(names) == 1:
         return names, None, item
     if "" in names and any(is_of_design(source) for source in bench.records.sources):

@@ -48,7 +48,7 @@ class Statistic:
     node: Population
     unit: str
     columns: Columns
-    item: NDArray[np.int32]
+    item: NDArray[np.intp]
 
     @property
     def over_items(self) -> bool:

@@ -12,7 +12,6 @@ from functools import reduce
 import numpy as np
 from numpy.typing import NDArray
 
-from specflow.conditions.match import Matching
 from specflow.limits.bounds import Bounds, LimitContext
 from specflow.limits.conversion import unit_of
 from specflow.limits.evaluation import evaluate_limit
@@ -37,7 +36,7 @@ from specflow.verification.limit_inputs import is_plain
 from specflow.verification.records import Records
 
 Array = NDArray[np.float64]
-Rows = NDArray[np.int32]
+Rows = NDArray[np.intp]
 Codes = NDArray[np.int8]
 _NO_BOUND = np.array([np.nan])
 _PASS, _FAIL = int(Verdict.PASS), int(Verdict.FAIL)
@@ -104,12 +103,12 @@ class Judgement:
         return unit_of(self.unit or "1")
 
 
-def serving(records: Records, matching: Matching) -> tuple[Rows, Rows]:
+def serving(records: Records, record: Rows, point: Rows) -> tuple[Rows, Rows]:
     """Return the pairs of record and point of which the record has a value and may still count."""
     if records.usable is None:
-        return matching.record, matching.point
-    kept = records.usable[matching.record]
-    return matching.record[kept], matching.point[kept]
+        return record, point
+    kept = records.usable[record]
+    return record[kept], point[kept]
 
 
 def readings_of(records: Records, record: Rows, point: Rows) -> Served:

@@ -38,7 +38,7 @@ class Held:
     fit: Fit
     arrays: ValueArrays
     conditions: Columns
-    item_codes: Rows
+    item_codes: NDArray[np.intp]
     items: tuple[str, ...]
     standing: RowStanding
 
@@ -57,7 +57,7 @@ class Records:
     high: Floats
     u: Floats | None
     conditions: Columns
-    item: Rows
+    item: NDArray[np.intp]
     items: tuple[str, ...]
     source: Rows
     sources: tuple[Source, ...]
@@ -85,9 +85,21 @@ def no_records(mismatches: Sequence[Mismatch] = ()) -> Records:
     """Return records of nothing."""
     none, rows = np.zeros(0), np.zeros(0, np.int32)
     return Records(
-        none, none, None, Columns(0), rows, ("",), rows, (), rows, np.zeros(0, np.int8), True, None, True,
+        low=none,
+        high=none,
+        u=None,
+        conditions=Columns(0),
+        item=np.zeros(0, np.intp),
+        items=("",),
+        source=rows,
+        sources=(),
+        row=rows,
+        standing=np.zeros(0, np.int8),
+        all_accepted=True,
+        usable=None,
+        exact=True,
         mismatches=tuple(mismatches),
-    )  # fmt: skip
+    )
 
 
 def gather(parts: Sequence[Held], conditions: Columns, mismatches: Sequence[Mismatch]) -> Records:
@@ -169,14 +181,14 @@ def _exact(parts: Sequence[Held], arrays: Sequence[ValueArrays]) -> NDArray[np.b
     )
 
 
-def _items(parts: Sequence[Held]) -> tuple[Rows, tuple[str, ...]]:
+def _items(parts: Sequence[Held]) -> tuple[NDArray[np.intp], tuple[str, ...]]:
     if len(parts) == 1:
         return parts[0].item_codes, parts[0].items
     names: dict[str, int] = {}
     codes = []
     for part in parts:
         places = [names.setdefault(name, len(names)) for name in part.items]
-        codes.append(np.array(places, np.int32)[part.item_codes])
+        codes.append(np.array(places, np.intp)[part.item_codes])
     return np.concatenate(codes), tuple(names)
 
 

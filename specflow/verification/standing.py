@@ -81,6 +81,8 @@ class StandingRegister:
     ) -> RowStanding:
         """Return the standing of every row of ``table`` as evidence of ``parameter``."""
         codes = np.zeros(table.rows, np.int8)
+        if self._nothing_recorded(table, dates):
+            return RowStanding(codes, True)
         reasons: list[str] = []
         for reason, rows in self._provisional(table, dates):
             _mark(codes, rows, PROVISIONAL, reason, reasons)
@@ -95,6 +97,14 @@ class StandingRegister:
             _mark(codes, _rows(table, withdrawal.rows), WITHDRAWN, reason, reasons)
         named = tuple(f"{table.id}: {reason}" for reason in reasons)
         return RowStanding(codes, not codes.any(), named)
+
+    def _nothing_recorded(self, table: EvidenceTable, dates: TextColumn | None) -> bool:
+        """Whether a table is accepted, taken on one day that has come, and nobody recorded anything about it."""
+        key = code_key(table.id)
+        taken = table.performed_on is not None and dates is None and table.performed_on <= self.as_of
+        plain = taken and bool(table.accepted_by) and not table.provisional and not table.equipment
+        known = key in self.supersessions or key in self.withdrawals or code_key(table.block) in self.changes
+        return plain and not known
 
     def _provisional(
         self, table: EvidenceTable, dates: TextColumn | None

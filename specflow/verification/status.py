@@ -138,7 +138,7 @@ def _judged_against(
         raise ExpressionError(
             f"it is in {limit.unit or 'no unit'}, the requirement in {requirement.limit.unit}"
         )
-    every = np.arange(found.points.size, dtype=np.int32)
+    every = np.arange(found.points.size)
     columns = limit_columns(limit, found.points, None, every, every)
     bounds = evaluate_limit(limit, LimitContext(columns, workspace.declared, found.points.size))
     results, rule = one.results, requirement.decision_rule

@@ -43,6 +43,15 @@ from specflow.verification.standing import RowStanding, StandingRegister
 NOWHERE = ConditionsSet(id="(no conditions)")
 
 
+@dataclass(frozen=True, slots=True)
+class Matched:
+    """A matching with its pairs ready to be used as indices."""
+
+    matching: Matching
+    record: NDArray[np.intp]
+    point: NDArray[np.intp]
+
+
 @dataclass
 class Workspace:
     """Shared look-ups and memos of one evaluation. ``served``: ids of tables that serve a required point."""
@@ -52,11 +61,11 @@ class Workspace:
     as_of: date
     served: set[str] = field(default_factory=set)
     _points: dict[str, Points] = field(default_factory=dict)
-    _matchings: dict[tuple[int, int], tuple[Points, Columns, Matching]] = field(default_factory=dict)
+    _matchings: dict[tuple[int, int], tuple[Points, Columns, Matched]] = field(default_factory=dict)
     _stacks: dict[tuple[str, ...], Columns] = field(default_factory=dict)
     _mapped: dict[tuple[int, int], tuple[ConditionMap, Columns, Columns]] = field(default_factory=dict)
     _records: dict[tuple[str, Wanted], Records] = field(default_factory=dict)
-    _items: dict[str, tuple[NDArray[np.int32], tuple[str, ...]]] = field(default_factory=dict)
+    _items: dict[str, tuple[NDArray[np.intp], tuple[str, ...]]] = field(default_factory=dict)
     _standings: dict[tuple[str, str], RowStanding] = field(default_factory=dict)
     _columns: dict[str, EvidenceColumns] = field(default_factory=dict)
 
@@ -142,12 +151,14 @@ class Workspace:
             )
         return conditions
 
-    def matching(self, points: Points, conditions: Columns) -> Matching:
+    def matching(self, points: Points, conditions: Columns) -> Matched:
         """Return which record serves which point; shared by all quantities recorded in the same rows."""
         key = id(points), id(conditions)
         known = self._matchings.get(key)
         if known is None:
-            known = self._matchings[key] = points, conditions, match(points, conditions)
+            found = match(points, conditions)
+            matched = Matched(found, found.record.astype(np.intp), found.point.astype(np.intp))
+            known = self._matchings[key] = points, conditions, matched
         return known[2]
 
     def conditions_of(self, requirement: Requirement, records: Records) -> Columns:
@@ -209,7 +220,7 @@ class Workspace:
             found = self._stacks[key] = stack([self.columns(table).conditions for table in tables])
         return found
 
-    def _item_codes(self, table: str, names: TextColumn) -> tuple[NDArray[np.int32], tuple[str, ...]]:
+    def _item_codes(self, table: str, names: TextColumn) -> tuple[NDArray[np.intp], tuple[str, ...]]:
         """Return the item of each row as codes into item ids; serials and ids are one, "" is no item named."""
         found = self._items.get(table)
         if found is None:
@@ -228,7 +239,7 @@ class Workspace:
         return found
 
 
-def _coded(names: TextColumn, identify: Callable[[str], str]) -> tuple[NDArray[np.int32], tuple[str, ...]]:
+def _coded(names: TextColumn, identify: Callable[[str], str]) -> tuple[NDArray[np.intp], tuple[str, ...]]:
     ids: dict[str, int] = {}
     places = [ids.setdefault(identify(label), len(ids)) for label in names.labels]
     if (names.codes < 0).any() or not places:
@@ -236,4 +247,4 @@ def _coded(names: TextColumn, identify: Callable[[str], str]) -> tuple[NDArray[n
         places.append(nobody)
     else:
         places.append(0)
-    return np.array(places, np.int32)[names.codes], tuple(ids)
+    return np.array(places, np.intp)[names.codes], tuple(ids)
