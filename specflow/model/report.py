@@ -65,6 +65,15 @@ class ReportTable(Document):
     columns: tuple[ReportColumn, ...]
     rows: tuple[ReportRow, ...]
 
+    def without(self, *keys: str) -> ReportTable:
+        """Return the same table without some columns, for where there is less room."""
+        kept = [place for place, column in enumerate(self.columns) if column.key not in keys]
+        rows = (
+            row.model_copy(update={"cells": tuple(row.cells[place] for place in kept)}) for row in self.rows
+        )
+        columns = tuple(self.columns[place] for place in kept)
+        return self.model_copy(update={"columns": columns, "rows": tuple(rows)})
+
 
 class Report(Document):
     """Several tables under one title, with the facts that state what it was made from and the caution."""

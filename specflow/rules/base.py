@@ -99,4 +99,9 @@ def read_docstring(code: str, text: str) -> tuple[str, dict[str, str]]:
     title = head.strip()
     if not title or "\n" in title or not title.endswith("."):
         raise ValueError(f"the rule {code} needs a title of one line that ends in a full stop")
-    return title, {name: " ".join(body.split()) for name, body in zip(names, bodies, strict=True)}
+    return title, {name: _sentence(body) for name, body in zip(names, bodies, strict=True)}
+
+
+def _sentence(text: str) -> str:
+    words = " ".join(text.split())
+    return words[:1].upper() + words[1:]

@@ -12,10 +12,11 @@ from specflow.limits.tree import side_of
 from specflow.model.base import code_key
 from specflow.model.columns import Columns
 from specflow.model.conditions import ConditionsSet
-from specflow.model.limit import Limit, LimitState
+from specflow.model.limit import Between, Bound, Limit, LimitState, Tolerance
 from specflow.model.requirement import Requirement
 from specflow.rules.base import Found
 from specflow.rules.facts import Facts, is_undefined
+from specflow.rules.words import counted
 from specflow.units import converter, parse_unit
 
 Pair = tuple[Requirement, Requirement]
@@ -53,8 +54,9 @@ def _plan(requirement: Requirement) -> str:
     plan = requirement.open_value
     if plan is None:
         return ""
-    parts = [plan.owner and f"by {plan.owner}", plan.due and f"until {plan.due}", plan.action]
-    return "".join(f", {part}" for part in parts if part)
+    parts = [plan.owner and f"owner {plan.owner}", plan.due and f"due {plan.due}", plan.action]
+    said = ", ".join(str(part) for part in parts if part)
+    return f" ({said})" if said else ""
 
 
 def open_value_without_plan(facts: Facts) -> Iterator[Found]:
@@ -94,9 +96,9 @@ def open_value_overdue(facts: Facts) -> Iterator[Found]:
         settled = requirement.limit.state is LimitState.FIRM and not is_undefined(requirement)
         if plan is None or plan.due is None or settled or plan.due >= facts.as_of:
             continue
-        owner = f" by {plan.owner}" if plan.owner else ""
-        days = (facts.as_of - plan.due).days
-        message = f"{requirement.limit.text} was to be settled{owner} until {plan.due}, {days} days ago"
+        owner = f" (owner {plan.owner})" if plan.owner else ""
+        days = counted((facts.as_of - plan.due).days, "day")
+        message = f"{requirement.limit.text} was to be settled by {plan.due}{owner}, {days} ago"
         yield Found(requirement.id, message, origin=requirement.origin)
 
 
@@ -173,27 +175,26 @@ def _same_limit(first: Limit, second: Limit) -> bool:
 
 
 def _contradiction(first: Limit, second: Limit) -> str:
-    """Say what contradicts: two numbers for one side, or no value that meets both; "" where nothing does."""
-    side = side_of(first.tree)
-    if side is not None and side is side_of(second.tree):
-        return f"two {side.value} limits"
-    ends = [_ends(first, second.unit), _ends(second, second.unit)]
+    """Say what contradicts between plain limits; "" where nothing does, or where a limit is more than two numbers.
+
+    A mask beside a flat limit, or a percentile beside a mean, are no contradiction: both may be meant to hold.
+    """
+    ends = [_ends(limit, second.unit) for limit in (first, second)]
     if any(one is None for one in ends):
         return ""
     lower = max(one[0] for one in ends if one is not None)
     upper = min(one[1] for one in ends if one is not None)
     if lower > upper:
         return "no value meets both"
-    return "two limits for both sides" if _sides_both(first, second) else ""
-
-
-def _sides_both(first: Limit, second: Limit) -> bool:
-    return side_of(first.tree) is None and side_of(second.tree) is None
+    sides = side_of(first.tree), side_of(second.tree)
+    if sides[0] is not sides[1]:
+        return ""
+    return "two limits for both sides" if sides[0] is None else f"two {sides[0].value} limits"
 
 
 def _ends(limit: Limit, unit: str) -> tuple[float, float] | None:
-    """Return the two bounds of a limit that depends on nothing, in ``unit``; None for any other limit."""
-    if limit_inputs(limit):
+    """Return the two bounds of a limit that is one or two numbers, in ``unit``; None for any other limit."""
+    if not isinstance(limit.tree, Bound | Between | Tolerance) or limit_inputs(limit):
         return None
     try:
         convert = converter(parse_unit(limit.unit or "1"), parse_unit(unit or "1"))

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from itertools import islice
 
 from specflow.errors import ExpressionError
 from specflow.limits import expression_names, parse_condition
@@ -13,7 +14,7 @@ from specflow.model.requirement import Requirement
 from specflow.model.verdict import RequirementStatus
 from specflow.rules.base import Found
 from specflow.rules.facts import Facts, shown
-from specflow.rules.words import counted, listed
+from specflow.rules.words import MOST_LISTED, counted
 from specflow.units import parse_unit
 
 
@@ -45,22 +46,24 @@ def partially_verified(facts: Facts) -> Iterator[Found]:
     for requirement, status in facts.defined:
         missing = status.n - status.k - status.n_failing
         if status.standing and missing > 0:
-            where = listed(_unproved(requirement, status, facts))
+            where = _unproved(requirement, status, facts)
             words = (
                 f"{status.k} of {status.n} points proved, {status.n_failing} failing, {missing} not proved"
             )
             yield Found(requirement.id, f"{words}: {where}" if where else words, origin=requirement.origin)
 
 
-def _unproved(requirement: Requirement, status: RequirementStatus, facts: Facts) -> list[str]:
-    """Return unproved points in words, those of the item shown for each activity."""
-    found: dict[str, None] = {}
+def _unproved(requirement: Requirement, status: RequirementStatus, facts: Facts) -> str:
+    """Name the first unproved points of the items that are shown, and say how many more there are."""
+    points: dict[int, None] = {}
     for activity in status.activities:
         results = shown(activity)
-        if results is None:
-            continue
-        found.update(dict.fromkeys(facts.point(requirement, point) for point in results.unproved))
-    return [f"({words})" for words in found if words]
+        if results is not None:
+            points.update(dict.fromkeys(results.unproved))
+    named = [words for point in islice(points, MOST_LISTED) if (words := facts.point(requirement, point))]
+    more = len(points) - len(named)
+    listing = ", ".join(f"({words})" for words in named)
+    return f"{listing} and {more} more" if named and more else listing
 
 
 def cannot_be_judged(facts: Facts) -> Iterator[Found]:

@@ -56,11 +56,12 @@ def marginal(facts: Facts) -> Iterator[Found]:
     """
     for requirement, status in facts.judged:
         if status.marginal:
-            nearest = status.smallest_margin
-            where = at_point(nearest.words, nearest.item) if nearest is not None else ""
-            margin = f", {_margin(nearest.margin, nearest.unit)}" if nearest is not None else ""
-            record = nearest.record if nearest is not None else None
-            message = f"nearer to the limit than its uncertainty (or the project's threshold){where}{margin}"
+            smallest = status.smallest_margin
+            message = "a reading is nearer to the limit than its uncertainty, or than the project allows without one"
+            if smallest is not None:
+                where = at_point(smallest.words, smallest.item)
+                message += f"; smallest margin {amount(smallest.margin, smallest.unit, signed=True)}{where}"
+            record = smallest.record if smallest is not None else None
             yield Found(requirement.id, message, origin=facts.origin(record))
 
 
@@ -203,10 +204,16 @@ def no_credit(facts: Facts) -> Iterator[Found]:
     for requirement, status in facts.defined:
         for activity in status.activities:
             results = shown(activity)
-            if results is None or status.stale:
+            if results is None or status.stale or _has_ranges(requirement, facts):
                 continue
             passing = set(results.points_with(Verdict.PASS, Verdict.CONDITIONAL_PASS))
             idle = sorted(passing.intersection(results.unproved))
             if idle and activity.why:
                 message = f"{counted(len(idle), 'point')} of {activity.activity} pass without credit: "
                 yield Found(requirement.id, message + listed(activity.why, 2), related=(activity.activity,))
+
+
+def _has_ranges(requirement: Requirement, facts: Facts) -> bool:
+    """Whether points are ranges: there a reading that passes may leave its point unproved for want of others."""
+    points = facts.points(requirement)
+    return points is not None and bool(points.step)

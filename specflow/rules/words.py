@@ -6,13 +6,16 @@ from collections.abc import Sequence
 
 from specflow.units import format_value
 
+#: How many things of a list are named before "and 5 more".
+MOST_LISTED = 3
+
 
 def counted(number: int, noun: str) -> str:
     """Return ``1 point``, ``2 points``."""
     return f"{number:,} {noun}{'' if number == 1 else 's'}"
 
 
-def listed(words: Sequence[str], most: int = 3) -> str:
+def listed(words: Sequence[str], most: int = MOST_LISTED) -> str:
     """Return ``a, b, c and 5 more``."""
     head = ", ".join(words[:most])
     rest = len(words) - most

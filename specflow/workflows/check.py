@@ -1,0 +1,88 @@
+"""Check the project: what the rules find, and whether anything of it is grave enough to stop a script."""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from datetime import date
+from typing import Any
+
+from specflow.errors import SpecflowError
+from specflow.model.base import code_key
+from specflow.model.finding import Finding, Severity
+from specflow.model.report import ReportTable
+from specflow.reports.findings import findings_table
+from specflow.store import ProjectStore
+from specflow.workflows.evaluate_project import evaluate_project
+from specflow.workflows.rule_catalogue import codes_of_rules
+
+
+@dataclass(frozen=True)
+class Checked:
+    """The findings that were asked for, worst first; ``threshold`` is the severity from which on they count."""
+
+    project: str
+    revision: int
+    as_of: str
+    findings: Sequence[Finding]
+    threshold: Severity
+
+    @property
+    def grave(self) -> int:
+        """How many findings are at the threshold or above."""
+        return sum(finding.severity.rank >= self.threshold.rank for finding in self.findings)
+
+    @property
+    def totals(self) -> Mapping[str, int]:
+        """How many findings there are of each severity, worst first."""
+        counts = Counter(finding.severity for finding in self.findings)
+        return {severity.value: counts[severity] for severity in sorted(Severity, key=lambda one: -one.rank)}
+
+    @property
+    def summary(self) -> str:
+        """The totals in a sentence."""
+        counts = ", ".join(f"{count} {severity}" for severity, count in self.totals.items())
+        at = f"{self.grave} at {self.threshold.value} or above"
+        return f"{len(self.findings)} findings ({counts}); {at}; judged as of {self.as_of}"
+
+    @property
+    def table(self) -> ReportTable:
+        """The findings as a table."""
+        return findings_table(self.findings)
+
+    @property
+    def data(self) -> dict[str, Any]:
+        """The findings with all their parts, for scripts."""
+        return {
+            "project": self.project,
+            "project_revision": self.revision,
+            "as_of": self.as_of,
+            "at_or_above": self.threshold.value,
+            "grave": self.grave,
+            "totals": dict(self.totals),
+            "findings": [finding.model_dump(mode="json") for finding in self.findings],
+        }
+
+
+def check_project(
+    store: ProjectStore, as_of: date, *, at_or_above: str = "warning", rules: Sequence[str] = ()
+) -> Checked:
+    """Return what the rules find in a project as of a date, of all rules or of those named.
+
+    SpecflowError for a severity or a rule that there is not.
+    """
+    threshold = _severity(at_or_above)
+    wanted = codes_of_rules(rules)
+    evaluation = evaluate_project(store, as_of)
+    findings = [finding for finding in evaluation.findings if not wanted or finding.rule in wanted]
+    snapshot = evaluation.snapshot
+    return Checked(snapshot.project.name, snapshot.revision, as_of.isoformat(), findings, threshold)
+
+
+def _severity(text: str) -> Severity:
+    try:
+        return Severity(code_key(text))
+    except ValueError:
+        known = ", ".join(severity.value for severity in Severity)
+        raise SpecflowError(f"there is no severity {text!r}", hint=f"severities: {known}") from None
