@@ -9,7 +9,7 @@ from specflow.model.evidence import EvidenceTable
 from specflow.model.verdict import Mismatch, RecordRef
 from specflow.rules.base import Found
 from specflow.rules.facts import Facts
-from specflow.rules.words import amount, at_point, counted, listed
+from specflow.rules.words import amount, at_point, counted, listed, shortened
 
 
 def unit_mismatch(facts: Facts) -> Iterator[Found]:
@@ -179,7 +179,7 @@ def left_out_cells(facts: Facts) -> Iterator[Found]:
     """
     for table in facts.snapshot.tables:
         if table.left_out:
-            cells = listed([f"{one.cell} {one.text!r} ({one.reason})" for one in table.left_out])
+            cells = listed([f"{one.cell} {shortened(one.text)!r} ({one.reason})" for one in table.left_out])
             message = f"{counted(len(table.left_out), 'cell')} left out: {cells}"
             yield Found(table.id, message, origin=facts.place(table), related=(table.file,))
 

@@ -108,6 +108,13 @@ class Facts:
         points = self.points(requirement)
         return "" if points is None or not number < points.size else point_words(points, number)
 
+    def named_items(self, requirement: Requirement) -> list[str]:
+        """Return the ids of the items that must prove a requirement; a name that nobody registered as it is."""
+        known = self.snapshot.items_by_name
+        return [
+            item.id if (item := known.get(code_key(name))) else name for name in requirement.provers.items
+        ]
+
     @cached_property
     def serving(self) -> frozenset[tuple[str, str]]:
         """Tables and columns (keys) of which a reading governs a point of any requirement."""

@@ -11,10 +11,10 @@ from specflow.limits.tree import walk_limit
 from specflow.model.declared import DeclaredValue
 from specflow.model.limit import Limit, Mask, MeasuredIn
 from specflow.model.requirement import Requirement
-from specflow.model.verdict import RequirementStatus
+from specflow.model.verdict import ActivityResult, PointResults, RequirementStatus
 from specflow.rules.base import Found
 from specflow.rules.facts import Facts, shown
-from specflow.rules.words import MOST_LISTED, counted
+from specflow.rules.words import MOST_LISTED, counted, listed
 from specflow.units import parse_unit
 
 
@@ -54,16 +54,43 @@ def partially_verified(facts: Facts) -> Iterator[Found]:
 
 
 def _unproved(requirement: Requirement, status: RequirementStatus, facts: Facts) -> str:
-    """Name the first unproved points of the items that are shown, and say how many more there are."""
-    points: dict[int, None] = {}
-    for activity in status.activities:
+    """Name the first unproved points, with their items where several must prove it, and say how many more there are."""
+    places = [
+        (results.item, point)
+        for activity in status.activities
+        for results in _proving(requirement, activity, facts)
+        for point in results.unproved
+    ]
+    first = list(islice(dict.fromkeys(places), MOST_LISTED))
+    item_is_said = requirement.provers.rule != "any one"
+    named = [
+        f"({at})" for item, point in first if (at := _place(requirement, item, point, facts, item_is_said))
+    ]
+    more = len(places) - len(named)  # a point that two activities lack counts for both, as it does in n
+    words = ", ".join(named) + (f" and {more} more" if named and more else "")
+    absent = _absent(requirement, status, facts)
+    return "; ".join(part for part in (words, f"nothing of item {listed(absent)}" if absent else "") if part)
+
+
+def _place(requirement: Requirement, item: str, point: int, facts: Facts, item_is_said: bool) -> str:
+    words = facts.point(requirement, point)
+    return f"{words}, item {item}" if words and item_is_said and item else words
+
+
+def _proving(requirement: Requirement, activity: ActivityResult, facts: Facts) -> list[PointResults]:
+    """Return the points of the items that must prove an activity: those named, or the one that is shown."""
+    if requirement.provers.rule != "each of":
         results = shown(activity)
-        if results is not None:
-            points.update(dict.fromkeys(results.unproved))
-    named = [words for point in islice(points, MOST_LISTED) if (words := facts.point(requirement, point))]
-    more = len(points) - len(named)
-    listing = ", ".join(f"({words})" for words in named)
-    return f"{listing} and {more} more" if named and more else listing
+        return [] if results is None else [results]
+    return [activity.items[name] for name in facts.named_items(requirement) if name in activity.items]
+
+
+def _absent(requirement: Requirement, status: RequirementStatus, facts: Facts) -> list[str]:
+    """Return the items that must prove the requirement and of which an activity has nothing."""
+    if requirement.provers.rule != "each of" or requirement.provers.may_complete_each_other:
+        return []
+    names = facts.named_items(requirement)
+    return [name for name in names if any(name not in activity.items for activity in status.activities)]
 
 
 def cannot_be_judged(facts: Facts) -> Iterator[Found]:
@@ -88,12 +115,14 @@ def unknown_parameter(facts: Facts) -> Iterator[Found]:
     Passes: R-1 limits "gain", or the project has a parameter of its own of that name.
     Do: correct the name, or add the parameter to the project with its unit.
     """
+    hints: dict[str, str] = {}
     for requirement, _ in facts.judged:
         name = requirement.quantity.parameter
         if facts.dictionary.get(name) is None:
-            near = ", ".join(one.key for one in facts.dictionary.suggest(name))
-            hint = f"did you mean {near}?" if near else ""
-            yield Found(requirement.id, f"{name!r} is no known parameter", hint, requirement.origin)
+            if name not in hints:
+                near = " or ".join(one.key for one in facts.dictionary.suggest(name))
+                hints[name] = f"did you mean {near}?" if near else ""
+            yield Found(requirement.id, f"{name!r} is no known parameter", hints[name], requirement.origin)
 
 
 def bandwidth_not_stated(facts: Facts) -> Iterator[Found]:

@@ -11,7 +11,7 @@ from specflow.model.requirement import Requirement, RuleName
 from specflow.model.verdict import PointResults, RequirementStatus, Verdict
 from specflow.rules.base import Found
 from specflow.rules.facts import FAILS, Facts, shown
-from specflow.rules.words import amount, at_point, counted, listed
+from specflow.rules.words import amount, at_point, counted, interval, listed
 
 
 def failing(facts: Facts) -> Iterator[Found]:
@@ -95,12 +95,10 @@ def inconclusive(facts: Facts) -> Iterator[Found]:
     Passes: "< -90 dBm" against at most -87 dBm.
     Do: measure with a lower floor, or state what the message says is missing.
     """
-    yield from _with_verdict(
-        facts, Verdict.INCONCLUSIVE, "the reading, or the limit there, is not known well enough"
-    )
+    yield from _with_verdict(facts, Verdict.INCONCLUSIVE)
 
 
-def _with_verdict(facts: Facts, verdict: Verdict, why: str) -> Iterator[Found]:
+def _with_verdict(facts: Facts, verdict: Verdict, why: str = "") -> Iterator[Found]:
     for requirement, status in facts.defined:
         points = [
             (results, point)
@@ -112,10 +110,14 @@ def _with_verdict(facts: Facts, verdict: Verdict, why: str) -> Iterator[Found]:
             results, point = points[0]
             said = [words for activity in status.activities for words in activity.why]
             where = at_point(facts.point(requirement, point), results.item)
-            message = (
-                f"{counted(len(points), 'point')} {verdict.words}, first{where}: {'; '.join(said[:2]) or why}"
-            )
+            reason = "; ".join(said[:2]) or why or _reading(requirement, results, point)
+            message = f"{counted(len(points), 'point')} {verdict.words}, first{where}: {reason}"
             yield Found(requirement.id, message, origin=facts.origin(facts.governing(results, point)))
+
+
+def _reading(requirement: Requirement, results: PointResults, point: int) -> str:
+    low, high = float(results.value_low[point]), float(results.value_high[point])
+    return f"the reading is {interval(low, high, requirement.limit.unit)}, the limit {requirement.limit.text}"
 
 
 def no_uncertainty(facts: Facts) -> Iterator[Found]:

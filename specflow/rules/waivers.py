@@ -9,7 +9,7 @@ from specflow.model.decision import Approval, Nonconformance, Waiver
 from specflow.model.requirement import Requirement
 from specflow.model.verdict import CloseOut, Compliance
 from specflow.rules.base import Found
-from specflow.rules.facts import FAILS, Facts
+from specflow.rules.facts import Facts
 
 
 def waiver_exceeded(facts: Facts) -> Iterator[Found]:
@@ -86,15 +86,14 @@ def failing_without_report(facts: Facts) -> Iterator[Found]:
 
     Why: a fail without a report is forgotten, or erased by a better run.
     Fails: two points fail and no report names the requirement.
-    Passes: a report names it, whatever was decided.
+    Passes: a report names it, whatever was decided; or an approved waiver covers what fails.
     Do: write a nonconformance report that names the requirement and the failing points.
     """
     for requirement, status in facts.judged:
-        fails = status.verdict in FAILS or status.n_failing > 0
-        if fails and not requirement.met_by_lower_level and code_key(requirement.id) not in facts.reports:
-            yield Found(
-                requirement.id, "fails, and no nonconformance report names it", origin=requirement.origin
-            )
+        fails = status.n_failing > 0 and not status.waived_by
+        if fails and code_key(requirement.id) not in facts.reports:
+            message = "fails, and no nonconformance report names it"
+            yield Found(requirement.id, message, origin=requirement.origin)
 
 
 def open_report(facts: Facts) -> Iterator[Found]:

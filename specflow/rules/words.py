@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 
 from specflow.units import format_value
@@ -27,6 +28,23 @@ def amount(value: float, unit: str, *, signed: bool = False) -> str:
     number = format_value(value, decimals=2)
     sign = "+" if signed and value >= 0 else ""
     return f"{sign}{number} {unit}" if unit not in ("", "1") else f"{sign}{number}"
+
+
+def interval(low: float, high: float, unit: str) -> str:
+    """Return a reading: ``at least 40 dB``, ``1 to 2 dB``, ``3 dB``."""
+    tail = f" {unit}" if unit not in ("", "1") else ""
+    if low == high:
+        return f"{format_value(low)}{tail}"
+    if math.isinf(low):
+        return f"at most {format_value(high)}{tail}"
+    if math.isinf(high):
+        return f"at least {format_value(low)}{tail}"
+    return f"{format_value(low)} to {format_value(high)}{tail}"
+
+
+def shortened(text: str, most: int = 40) -> str:
+    """Return a text cut to ``most`` characters, with the dots that say so."""
+    return text if len(text) <= most else f"{text[: most - 1]}…"
 
 
 def at_point(words: str, item: str = "") -> str:
