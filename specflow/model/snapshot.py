@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections import defaultdict
 from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
@@ -17,6 +18,7 @@ from specflow.model.requirement import Activity, Requirement
 from specflow.model.verdict import RequirementStatus
 
 D = TypeVar("D", bound=Document)
+_RUNS = re.compile(r"\d+|\D+")
 
 ColumnsLoader = Callable[[Sequence[str]], Mapping[str, EvidenceColumns]]
 
@@ -120,23 +122,8 @@ class Snapshot:
 
 def reading_order(code: str) -> tuple[tuple[int, int, str], ...]:
     """Return the sort key under which ``R-2`` comes before ``R-10``."""
-    parts: list[tuple[int, int, str]] = []
-    digits = ""
-    word = ""
-    for character in [*code, ""]:
-        if character.isdecimal():
-            if word:
-                parts.append((1, 0, word))
-                word = ""
-            digits += character
-            continue
-        if digits:
-            parts.append((0, int(digits), ""))
-            digits = ""
-        word += character
-    if word:
-        parts.append((1, 0, word))
-    return tuple(parts)
+    runs = _RUNS.findall(code)
+    return tuple([(0, int(run), "") if run[0].isdecimal() else (1, 0, run) for run in runs])
 
 
 def _grouped(documents: Iterable[D], keys: Callable[[D], Iterable[str]]) -> Mapping[str, Sequence[D]]:
@@ -161,4 +148,3 @@ class Results:
     def of(self, requirement: str) -> RequirementStatus:
         """Return the status of one requirement; KeyError when it was not computed."""
         return self.statuses[code_key(requirement)]
-

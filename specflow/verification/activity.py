@@ -78,10 +78,10 @@ def summarise(
         {one.item: one.results for one in items},
         governing,
         _smallest(points, chosen, failing, unit, governing),
-        any(bool(one.marginal.any()) for one in chosen),
+        any(np.count_nonzero(one.marginal) > 0 for one in chosen),
         tuple(why),
     )
-    counted = any(bool(one.counts.any()) for one in items)
+    counted = any(np.count_nonzero(one.counts) > 0 for one in items)
     return ActivityOutcome(
         result, chosen, failing, verdicts, counted, any(map(_needs_re_verification, chosen))
     )
@@ -89,7 +89,7 @@ def summarise(
 
 def _needs_re_verification(one: ItemPoints) -> bool:
     """Whether stale evidence stands at a point that nothing proves."""
-    return bool(one.stale.any()) and bool((one.stale & (one.effective == Verdict.NONE)).any())
+    return bool(np.count_nonzero(one.stale & (one.effective == Verdict.NONE)))
 
 
 def _provers(
@@ -214,7 +214,7 @@ def _sortable(one: ItemPoints) -> NDArray[np.float64]:
     """Return guarded margins, plain ones where no guarded margin is known; readings without any come last."""
     guarded = one.results.guarded_margin
     unknown = guarded != guarded
-    if not unknown.any():
+    if not np.count_nonzero(unknown):
         return guarded
     margin = np.where(unknown, one.results.margin, guarded)
     return np.where(margin == margin, margin, np.inf)

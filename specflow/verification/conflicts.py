@@ -41,7 +41,7 @@ def _expanded(bench: Bench, unit: str, policy: Policy) -> Floats:
     """Return U of every reading, the house's threshold where none is known."""
     spread = 2 * bench.readings.u
     unknown = spread != spread
-    if unknown.any():
+    if np.count_nonzero(unknown):
         low = bench.readings.low
         house: Floats | float = policy.marginal_db
         if not unit_of(unit or "1").is_log:
@@ -65,7 +65,7 @@ def _suspicious(bench: Bench, allowed: Floats) -> Iterator[NDArray[np.intp]]:
     np.minimum.at(lowest, cell, readings.low + half)
     np.maximum.at(highest, cell, readings.high - half)
     doubtful = highest > lowest
-    if not doubtful.any():
+    if not np.count_nonzero(doubtful):
         return
     rows = np.flatnonzero(doubtful[cell] & (readings.low == readings.high))
     rows = rows[records.standing[readings.record[rows]] == ACCEPTED]

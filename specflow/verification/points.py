@@ -138,7 +138,7 @@ def _by_item(bench: Bench, together: bool) -> tuple[Sequence[str], Rows | None, 
 
 def _present(names: Sequence[str], pair: Rows | None, item: Rows) -> tuple[Sequence[str], Rows | None, Rows]:
     """Keep the items that have evidence at a required point, in their order."""
-    seen = np.flatnonzero(np.bincount(item, minlength=len(names)))
+    seen = np.bincount(item, minlength=len(names)).nonzero()[0]
     if len(seen) == len(names):
         return names, pair, item
     return [names[code] for code in seen.tolist()], pair, np.searchsorted(seen, item)
@@ -183,12 +183,12 @@ def _governing(grid: _Grid, counts: Flags) -> Rows:
     weight |= grid.of(readings.verdict)
     heaviest = np.full(grid.cells, -1, np.int16)
     np.maximum.at(heaviest, cell, weight)
-    heavy = np.flatnonzero(weight == heaviest[cell])
+    heavy = (weight == heaviest[cell]).nonzero()[0]
     cell, margin = cell[heavy], grid.of(readings.guarded)[heavy]
     margin = np.where(margin == margin, margin, np.inf)
     least = np.full(grid.cells, np.inf)
     np.minimum.at(least, cell, margin)
-    first = np.flatnonzero(margin == least[cell])[::-1]
+    first = (margin == least[cell]).nonzero()[0][::-1]
     cell, chosen = cell[first], heavy[first]
     governing = np.full(grid.cells, -1, np.intp)
     governing[cell] = chosen  # of equals the first stays, because it is written last
@@ -262,7 +262,7 @@ def _proved(grid: _Grid) -> Flags:
     """Ask the one place that decides, item by item, whether readings with credit that pass prove each point."""
     bench = grid.bench
     passing = _passing(bench.readings.verdict, bench.conditional_pass_counts) & bench.credit.counts
-    places = np.flatnonzero(grid.of(passing))
+    places = grid.of(passing).nonzero()[0]
     record, item = grid.of(bench.readings.record)[places], grid.item[places]
     proved = np.empty((grid.items, bench.points.size), bool)
     for code in range(grid.items):

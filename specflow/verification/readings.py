@@ -233,9 +233,9 @@ def _test_tolerance(limit: Limit, unit: str) -> float:
 
 
 def _overrule(verdict: Codes, unsure: NDArray[np.bool_], inadmissible: NDArray[np.bool_]) -> None:
-    if unsure.any():
+    if np.count_nonzero(unsure):
         verdict[np.broadcast_to(unsure, verdict.shape)] = Verdict.INCONCLUSIVE
-    if inadmissible.any():
+    if np.count_nonzero(inadmissible):
         verdict[inadmissible] = Verdict.NONE
 
 
@@ -255,7 +255,7 @@ def _unsure_words(u: Array, judgement: Judgement, lost: NDArray[np.bool_]) -> li
             words.append(
                 f"{above} readings are not admissible: U up to {most:.3g}, allowed is {rule.greatest_uncertainty:g}"
             )
-    if lost.any():
+    if np.count_nonzero(lost):
         words.append("the limit states a measurement bandwidth, and some readings state none")
     return words
 
