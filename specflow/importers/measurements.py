@@ -8,7 +8,7 @@ from pathlib import Path
 
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.evidence import read_table
-from specflow.importers.measured.facts import read_preamble
+from specflow.importers.measured.facts import Fact, read_preamble
 from specflow.importers.measured.layout import layout_key
 from specflow.importers.measured.mapping import LayoutMapping, read_mappings, write_mapping
 from specflow.importers.measured.meaning import read_meanings
@@ -20,7 +20,7 @@ from specflow.importers.measured.result import (
     Question,
     Role,
 )
-from specflow.importers.measured.stated import collect
+from specflow.importers.measured.stated import collect, holds_below
 from specflow.importers.measured.tables import FoundTable, cut_table, find_tables, rows_outside
 from specflow.importers.readers import Grid, GridFile, open_grids, sheet
 from specflow.model.evidence import EvidenceFile, FileKind, TableMapping
@@ -49,6 +49,7 @@ class _Found:
     key: str
     mapping: LayoutMapping
     mapping_from: str
+    sheet_facts: tuple[Fact, ...] = ()
 
 
 def read_measurements(
@@ -93,7 +94,9 @@ def _read(
     mapping = found.mapping
     if include_hidden_rows:
         mapping = replace(mapping, include_hidden_rows=True)
-    table = read_table(found.table, found.key, context, mapping, found.mapping_from, person)
+    table = read_table(
+        found.table, found.key, context, mapping, found.mapping_from, person, found.sheet_facts
+    )
     if not found.mapping_from:
         return table
     return replace(table, mapping=write_mapping(replace(found.mapping, layout=found.key)))
@@ -122,6 +125,7 @@ def _tables(
     where = grid.file if grid.name == grid.file else f"sheet {grid.name}"
     if not tables:
         skipped.append(f"{where}: no table was found (a row of headers with numbers below)")
+    facts: tuple[Fact, ...] = ()
     for table in tables:
         key = layout_key(table)
         mapping, source = _mapping_for(key, given, snapshot, mapping_name)
@@ -130,14 +134,16 @@ def _tables(
             continue
         if mapping.header_rows > 1:
             table = cut_table(grid, table.top, table.header_row, mapping.header_rows, context.recognises)
-        yield _Found(table, key, mapping, source)
+        yield _Found(table, key, mapping, source, facts)
+        own = read_preamble(grid, table.top, table.header_row).facts
+        facts = (*filter(holds_below, own), *facts)
     outside = list(rows_outside(grid, tables)) if tables else []
     if outside:
         findings.append(
             _finding(
                 grid,
                 f"{len(outside)} rows with numbers belong to no table, the first is row {outside[0]}",
-                Severity.WARNING,
+                Severity.ERROR,
             )
         )
 
@@ -200,6 +206,6 @@ def _finding(grid: Grid, message: str, severity: Severity) -> Finding:
         subject=grid.name,
         subject_kind="sheet",
         message=message,
-        remedy="see whether anything is missing below the table" if severity is Severity.WARNING else "",
+        remedy="give them headers, or delete them" if severity is Severity.ERROR else "",
         origin=Origin(file=grid.file, sheet="" if grid.name == grid.file else grid.name),
     )

@@ -18,6 +18,7 @@ from specflow.model.evidence import (
     Supersession,
     TableMapping,
 )
+from specflow.model.finding import Severity
 from specflow.model.snapshot import Snapshot
 from specflow.store import ProjectStore
 from specflow.workflows.earlier_tables import Replacement, replaced_rows
@@ -203,6 +204,13 @@ def _refuse_unsettled(preview: AttachPreview, decision: Decision) -> None:
             f"{preview.rejected_cells} cells or rows are rejected; nothing was stored",
             where=where,
             hint="mend them in the file, or say --take-rest to store the rest; what is left out stays a finding",
+        )
+    faults = [one for one in preview.measurements.findings if one.severity is Severity.ERROR]
+    if faults and not decision.take_rest:
+        raise DocumentError(
+            f"{faults[0].message}; nothing was stored",
+            where=where,
+            hint=f"{faults[0].remedy}, or say --take-rest",
         )
     empty = [table for table in preview.measurements.tables if table.document is None and not table.questions]
     if empty and not preview.new_tables and not preview.known:

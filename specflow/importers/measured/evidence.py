@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from typing import TypeVar
 
 import numpy as np
@@ -10,7 +10,7 @@ import numpy as np
 from specflow.importers.measured.conditions import merged_items, read_conditions
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.document import Identity, make_document
-from specflow.importers.measured.facts import read_preamble
+from specflow.importers.measured.facts import Fact, read_preamble, states_something
 from specflow.importers.measured.mapping import LayoutMapping
 from specflow.importers.measured.meaning import read_meanings
 from specflow.importers.measured.pivot import stack
@@ -41,13 +41,18 @@ def read_table(
     mapping: LayoutMapping,
     mapping_from: str,
     person: Mapping[str, str],
+    sheet_facts: Sequence[Fact] = (),
 ) -> MeasuredTable:
-    """Read one table; it has no document while a question is open or when no row is left."""
+    """Read one table; it has no document while a question is open or when no row is left.
+
+    ``sheet_facts`` are said above an earlier table of the sheet and hold where this one says nothing else.
+    """
     preamble = read_preamble(table.grid, table.top, table.header_row)
-    stated = collect(preamble.facts, mapping.stated, person)
+    stated = collect([*preamble.facts, *sheet_facts], mapping.stated, person)
     sheet = "" if table.grid.name == table.grid.file else table.grid.name
     work = TableWork(table, context, mapping, stated, Rejects(sheet))
-    work.notes += table.stepped_over
+    work.notes += [remark.words for remark in table.stepped_over]
+    _ask_about_remarks(work)
     work.meanings = read_meanings(table, context, mapping, stated)
     work.questions += stated.questions
     work.questions += [meaning.question for meaning in work.meanings if meaning.question]
@@ -77,6 +82,17 @@ def read_table(
 
 def _count(columns: EvidenceColumns) -> int:
     return sum(int(np.count_nonzero(~np.isnan(one.low))) for one in columns.values.values())
+
+
+def _ask_about_remarks(work: TableWork) -> None:
+    """A remark between rows of data that states something, as "T = 85 °C" over a group of rows, must not be passed over."""
+    for remark in work.table.between:
+        if states_something(remark.text):
+            cell = f"row {remark.row}"
+            remedy = "give it a column of its own, or make each group a table with headers"
+            work.ask(
+                "", cell, f"{remark.text[:60]!r} stands among the rows and may hold for those below", remedy
+            )
 
 
 def _ask_about_columns(work: TableWork) -> None:

@@ -7,7 +7,7 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 from datetime import date, datetime
 
-from specflow.importers.measured.header_text import read_header
+from specflow.importers.measured.header_text import known_unit, read_header
 from specflow.importers.readers import Grid, OddKind, Value, address, is_blank, looks_numeric
 
 _PAIR = re.compile(r"^\s*(?P<key>[^:=]{1,60}?)\s*[:=]\s*(?P<value>.*)$", re.DOTALL)
@@ -45,6 +45,14 @@ def read_preamble(grid: Grid, top: int, header_row: int) -> Preamble:
     return Preamble(tuple(facts), title)
 
 
+def states_something(text: str) -> bool:
+    """Whether a line says a value of something: a key with a value, or a number with a unit."""
+    pair = _PAIR.match(text)
+    return bool(pair and pair["value"] and re.search(r"[0-9]", pair["value"])) or bool(
+        re.search(r"[0-9]\s*(?:°|[kMG]?Hz\b|dBm?\b|V\b|K\b|deg)", text)
+    )
+
+
 def _facts(grid: Grid, row: int, cells: list[tuple[int, Value]]) -> Iterator[Fact]:
     place = 0
     while place < len(cells):
@@ -55,11 +63,20 @@ def _facts(grid: Grid, row: int, cells: list[tuple[int, Value]]) -> Iterator[Fac
         pair = _PAIR.match(value)
         if pair and pair["value"]:
             yield Fact(pair["key"].strip(), " ".join(pair["value"].split()), address(row, column))
-        elif place < len(cells) and (pair or len(cells) % 2 == 0):
+        elif place < len(cells) and (pair or _is_key(value, cells[place][1], len(cells))):
             key = pair["key"].strip() if pair else value.strip()
             there, beside = cells[place]
-            yield Fact(key, _value_text(grid, row, there, beside, key), address(row, there))
             place += 1
+            text = _value_text(grid, row, there, beside, key)
+            if looks_numeric(text) and place < len(cells) and known_unit(str(cells[place][1])) is not None:
+                text = f"{text} {cells[place][1]}"
+                place += 1
+            yield Fact(key, text, address(row, there))
+
+
+def _is_key(text: str, beside: Value, cells: int) -> bool:
+    """Whether a text without a colon is the key of the cell beside it: in a row of pairs, or before a number."""
+    return cells % 2 == 0 or not isinstance(beside, str) or looks_numeric(beside)
 
 
 def _value_text(grid: Grid, row: int, column: int, value: Value, key: str) -> str:

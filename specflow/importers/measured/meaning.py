@@ -158,4 +158,5 @@ class _Reader:
         if not cells.numeric[places].any() and not any(map(_READING_AS_TEXT.match, texts)):
             return heading.means(Role.REMARK, "words that name no condition; kept as a remark")
         near = ", ".join(one.key for one in self._context.dictionary.suggest(heading.parts.name))
-        return heading.ask_parameter("names no parameter and no condition that is known", near)
+        odd = f"; {heading.parts.odd_unit!r} is no unit" if heading.parts.odd_unit else ""
+        return heading.ask_parameter(f"names no parameter and no condition that is known{odd}", near)

@@ -11,6 +11,7 @@ from specflow.importers.measured.header_text import header_key
 from specflow.importers.measured.result import Role
 from specflow.importers.measured.roles import UncertaintyWords
 from specflow.importers.measured.unit_source import FoundUnit
+from specflow.parameters.headers import tokens
 
 
 def uncertainty_column(heading: Heading, words: UncertaintyWords, unit: FoundUnit) -> ColumnMeaning:
@@ -89,6 +90,9 @@ def _named(name: str, values: Sequence[ColumnMeaning]) -> ColumnMeaning | None:
         for one in values
         if key and key in (header_key(one.header.text), header_key(one.parts.name), *_spellings(one))
     ]
+    if not found and name:
+        words = set(tokens(name))
+        found = [one for one in values if words <= set(tokens(one.header.text))]
     return found[0] if len(found) == 1 else None
 
 

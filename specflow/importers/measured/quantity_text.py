@@ -127,7 +127,12 @@ def _unknown_place(place: str) -> str:
 
 def _place_remedy(place: str, known: Iterable[str]) -> str:
     if re.match(r"[+\-−]?[0-9_]", place):
-        return "let the mapping read it from the header with a [table.pivot], or give the condition a column of its own"
+        dimension = "{frequency}" if "hz" in place.casefold() else "{DIMENSION}"
+        pattern = re.sub(r"[0-9][0-9.,]*", dimension, place, count=1)
+        return (
+            f'let a mapping read it from the headers, [table.pivot] header = "... @ {pattern} ..."; '
+            "or give the condition a column of its own"
+        )
     return f"name the plane in the mapping (known: {', '.join(sorted(known)) or 'none'})"
 
 

@@ -17,7 +17,17 @@ from specflow.importers.measured.rejects import Rejects
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.measured.unit_source import format_runs
 from specflow.importers.readers import Grid, OddKind, OddRun, Value, is_blank
-from specflow.units import Blank, Reading, Unit, parse_reading, parse_reading_with_unit, parse_unit
+from specflow.units import (
+    ONE,
+    PERCENT,
+    Blank,
+    Kind,
+    Reading,
+    Unit,
+    parse_reading,
+    parse_reading_with_unit,
+    parse_unit,
+)
 
 Floats = NDArray[np.float64]
 
@@ -65,12 +75,13 @@ def _apply_formats(
         return
     percent = _marked(runs, OddKind.PERCENT, rows) & ~np.isnan(numbers.low)
     numeric = ~np.isnan(numbers.low)
+    is_percent = unit.kind is Kind.RATIO and not unit.is_log and unit.scale == PERCENT.scale
     if percent.any():
-        if unit.symbol not in ("%", "1"):
+        if not is_percent and unit != ONE:
             numbers.problem = f"cells in a percent format under the unit {unit}"
-        elif unit.symbol == "%" and (numeric & ~percent).any():
+        elif is_percent and (numeric & ~percent).any():
             numbers.problem = _mixed(rows, percent, numeric)
-        elif unit.symbol == "%":
+        elif is_percent:
             low = np.round(numbers.low * 100, 12)  # 0.031 in binary times 100 is not 3.1
             example = float(numbers.low[percent][0])
             numbers.low = numbers.high = low

@@ -85,7 +85,7 @@ def select_rows(
         summary = _summary_rows(table, meanings, rows)
         if summary:
             marked = np.isin(rows, summary)
-            reason = "a summary or limit row, no reading (keep_summary_rows = true in a mapping reads it)"
+            reason = "a row of a summary, a limit or a note, no reading (keep_summary_rows = true in a mapping reads it)"
             _reject(table, rows[marked], reason, rejects)
             rows = rows[~marked]
     return rows, notes
@@ -117,6 +117,8 @@ def _summary_rows(table: FoundTable, meanings: Sequence[ColumnMeaning], rows: Ro
 
 
 def _is_summary(text: str) -> bool:
+    if text.rstrip().endswith(":"):
+        return True
     plain = re.sub(r"[:.\s]+", " ", text.casefold()).strip()
     return (plain.split(" ")[0] in _SUMMARY and len(plain) <= 24) or plain.startswith(_SUMMARY_PHRASES)
 

@@ -55,6 +55,11 @@ NAMES: Mapping[str, tuple[str, ...]] = {
     "corrections": ("correction", "corrections applied"),
 }  # fmt: skip
 
+#: What is said above the first table of a sheet holds for those below it, too; conditions and uncertainties do not.
+_OF_THE_SHEET = frozenset(
+    ["block", "item", "method", "stage", "set_up", "performer", "date", "procedure", "procedure_revision", "model", "model_version", "validated", "hardware"]
+)
+
 _SPELLINGS = {
     re.sub(r"[\s_./-]+", "", spelling): name
     for name, spellings in NAMES.items()
@@ -131,6 +136,11 @@ def collect(facts: Iterable[Fact], mapping: Mapping[str, str], person: Mapping[s
     return stated
 
 
+def holds_below(fact: Fact) -> bool:
+    """Whether a fact above the first table of a sheet speaks of the tables below it as well."""
+    return canonical(fact.key) in _OF_THE_SHEET or _CALIBRATION.match(fact.key) is not None
+
+
 def canonical(key: str) -> str:
     """Return the name that a key means: one of ``NAMES``, a dimension, or "" when it is neither."""
     name = _SPELLINGS.get(re.sub(r"[\s_./-]+", "", key.casefold()), "")
@@ -176,7 +186,9 @@ def _take(stated: Stated, key: str, text: str, by: str, cell: str) -> None:
         _take_calibration(stated, calibration["asset"] or "instrument", text, by, cell, key)
         return
     name = canonical(key)
-    if name in NAMES:
+    if name == "temperature" and re.match(r"[+\-−]?[0-9]", text):
+        _take_temperature(stated, key, text, by, cell)
+    elif name in NAMES:
         _take_name(stated, name, key, text, by, cell)
     elif name:
         _take_condition(stated, name, key, text, by, cell)

@@ -21,7 +21,8 @@ from specflow.importers.readers import Grid, Value, address, is_blank, looks_num
 Recognises = Callable[[str], bool]
 
 _LIKE_A_READING = re.compile(r"^[<>≤≥=~+\-−±]*\s*[.,]?[0-9]")
-_ONE_READING = re.compile(r"^[<>≤≥~±+\-−]*\s*[0-9][0-9.,]*(?:[eE][+\-]?[0-9]+)?\s*[^\s0-9]{0,6}$")
+_NUMBER = r"[<>≤≥~±+\-−]*\s*[0-9][0-9.,]*(?:[eE][+\-]?[0-9]+)?"
+_ONE_READING = re.compile(rf"^{_NUMBER}(?:\s*(?:±|\+/-|to|\.\.+|…)\s*{_NUMBER})?\s*[^\s0-9]{{0,6}}$")
 _LOOK_AHEAD = 5
 _NO_UNIT = ("", "-", "—", "–", "n/a")
 
@@ -42,13 +43,23 @@ class HeaderCell:
         return address(self.row, self.column)
 
 
+@dataclass(frozen=True, slots=True)
+class Remark:
+    """A row inside a table that is no data: its text ("" for repeated headers) and what is said about it."""
+
+    row: int
+    text: str
+    words: str
+
+
 @dataclass(frozen=True)
 class FoundTable:
     """A table on a sheet.
 
     ``top`` is the first row that may speak about it (title, key–value rows); ``rows`` int32 are the row numbers that
     hold data, among ``first_row`` up to, not including, ``stop_row``. ``headers`` are named columns in order;
-    ``unnamed`` are columns with cells and no header. ``stepped_over`` tells of rows inside that are no data.
+    ``unnamed`` are columns with cells and no header. ``stepped_over`` are rows that are no data, ``between`` those of
+    them with data below.
     """
 
     grid: Grid
@@ -60,7 +71,8 @@ class FoundTable:
     headers: tuple[HeaderCell, ...]
     rows: Rows
     unnamed: tuple[int, ...] = ()
-    stepped_over: tuple[str, ...] = ()
+    stepped_over: tuple[Remark, ...] = ()
+    between: tuple[Remark, ...] = ()
     _cells: dict[int, ColumnCells] = field(default_factory=dict, repr=False, compare=False)
 
     def cells(self, column: int) -> ColumnCells:
@@ -214,18 +226,18 @@ class _Body:
             for column in range(grid.first_column, grid.last_column + 1)
         }
         self._named = [header.column for header in headers]
-        self._over: list[str] = []
+        self._remarks: list[Remark] = []
 
     def table(self, top: int, header_row: int, units_row: int | None) -> FoundTable:
         """Cut the table."""
         data, stop = self._data_rows()
         places = np.flatnonzero(data)
+        last = int(places[-1]) + self._first if len(places) else self._first
         unnamed = tuple(
             column
             for column, cells in self._cells.items()
             if column not in self._named and cells.filled[places].any()
         )
-        cells = self._cells if stop == self._grid.last_row + 1 else {}
         return FoundTable(
             self._grid,
             top,
@@ -236,61 +248,69 @@ class _Body:
             self._headers,
             (places + self._first).astype(np.int32),
             unnamed,
-            tuple(self._over),
-            dict(cells),
+            tuple(remark for remark in self._remarks if remark.row < stop),
+            tuple(remark for remark in self._remarks if remark.row < last),
+            dict(self._cells) if stop == self._grid.last_row + 1 else {},
         )
 
     def _data_rows(self) -> tuple[Flags, int]:
+        """Which rows are data, and the row at which the table has ended."""
         size = max(self._grid.last_row + 1 - self._first, 0)
-        filled = np.zeros(size, np.int32)
-        numeric = np.zeros(size, np.int32)
-        for column in self._named:
-            filled += self._cells[column].filled
-            numeric += self._cells[column].numeric
-        beside = np.zeros(size, np.int32)
+        filled, numeric, beside = (np.zeros(size, np.int32) for _ in range(3))
         for column, cells in self._cells.items():
-            if column not in self._named:
+            if column in self._named:
+                filled += cells.filled
+                numeric += cells.numeric
+            else:
                 beside += cells.filled
         data = filled > 0
         for row in self._grid.comment_rows:
             if row >= self._first:
                 data[row - self._first] = False
-        stop = self._end(filled, data)
-        data[stop:] = False
+        written = data.copy()
+        end = size
         for place in np.flatnonzero(data & (numeric == 0)).tolist():
             action = self._row_of_words(place, int(filled[place]), int(beside[place]))
             if action == "ends":
-                data[place:] = False
-                return data, self._first + place
+                end = place
+                break
             data[place] = action == "data"
+        data[end:] = False
+        stop = self._without_rest(data, written, filled, end)
         return data, self._first + stop
 
-    def _end(self, filled: Rows, data: Flags) -> int:
-        """Where, after a blank row, fewer than half of the usual cells are filled."""
+    def _without_rest(self, data: Flags, written: Flags, filled: Rows, end: int) -> int:
+        """Leave out, below a blank row at the end, blocks of rows that fill less than half of the usual cells.
+
+        What is said there (signatures, or the key–value rows of the next table) is no data of this one.
+        """
         if not data.any():
-            return len(filled)
+            return end
         usual = float(np.median(filled[data]))
-        after_blank = np.flatnonzero((filled[1:] > 0) & (filled[:-1] == 0)) + 1
-        after_blank = after_blank[data[:1].any() or after_blank > int(np.argmax(data))]
-        sparse = after_blank[filled[after_blank] < usual / 2] if usual > 2 else after_blank[:0]
-        for place in sparse.tolist():
-            if len(self._named) > 1:
-                return int(place)
-        return len(filled)
+        starts = np.flatnonzero(written[1:end] & ~written[: max(end - 1, 0)]) + 1
+        stop = end
+        for start in reversed(starts.tolist()):
+            block = slice(start, stop)
+            if (data[block] & (filled[block] >= usual / 2)).any():
+                break
+            data[block] = False
+            stop = start
+        is_followed = end < len(data)
+        return int(np.flatnonzero(data)[-1]) + 1 if is_followed else stop
 
     def _row_of_words(self, place: int, filled: int, beside: int) -> str:
         row = self._first + place
         texts = _words(self._grid, row)
         mine = {header_key(header.text) for header in self._headers}
         if len(texts) >= 2 and {header_key(text) for text in texts.values()} <= mine:
-            self._over.append(f"row {row} repeats the headers")
+            self._remarks.append(Remark(row, "", f"row {row} repeats the headers"))
             return "skip"
         known = sum(map(self._recognises, texts.values()))
         if len(texts) >= 2 and known == len(texts) and _has_numbers_below(self._grid, row, texts):
             return "ends"
         if filled == 1 and beside == 0 and len(self._named) > 1:
             words = next(str(cells.values[place]) for cells in self._cells.values() if cells.filled[place])
-            self._over.append(f"row {row} is a remark: {words[:60]!r}")
+            self._remarks.append(Remark(row, words, f"row {row} is a remark: {words[:60]!r}"))
             return "skip"
         return "data"
 

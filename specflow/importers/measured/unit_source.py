@@ -12,7 +12,7 @@ from specflow.errors import UnitError
 from specflow.importers.measured.header_text import HeaderText, known_unit
 from specflow.importers.measured.tables import FoundTable, HeaderCell
 from specflow.importers.readers import OddKind, OddRun, address
-from specflow.units import parse_reading_with_unit, parse_unit
+from specflow.units import format_unit, parse_reading_with_unit, parse_unit
 
 _MOST_TEXTS = 2000
 
@@ -50,11 +50,10 @@ def format_runs(table: FoundTable, column: int) -> list[OddRun]:
 
 def _checked(unit: str, source: str) -> FoundUnit:
     try:
-        parse_unit(unit)
+        return FoundUnit(format_unit(parse_unit(unit)), source)
     except UnitError as error:
         hint = f" ({error.hint})" if error.hint else ""
         return FoundUnit(problem=f"{error.message}{hint}, found in {source}")
-    return FoundUnit(unit, source)
 
 
 def _from_format(table: FoundTable, header: HeaderCell) -> FoundUnit | None:

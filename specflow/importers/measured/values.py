@@ -22,6 +22,13 @@ from specflow.units import Kind, format_unit, parse_unit
 ONE_FORMAT = "give the whole column one number format, and attach again"
 
 
+#: Ratios that count how far something lies below something else.
+_POSITIVE = frozenset(
+    ("return_loss", "insertion_loss", "isolation", "aclr", "acs", "image_rejection", "carrier_rejection",
+     "cross_polarisation", "front_to_back_ratio", "side_lobe_suppression")
+)  # fmt: skip
+
+
 @dataclass
 class ReadValues:
     """Documents of the value columns, and their arrays by name."""
@@ -50,6 +57,7 @@ def column_numbers(work: TableWork, meaning: ColumnMeaning) -> Numbers:
     if meaning.column in work.table.grid.hidden_columns:
         work.notes.append(f"column {meaning.letter} is hidden in the file; it was read")
     _reject_merged(work, meaning.column, numbers)
+    _doubt_sign(work, meaning, numbers)
     work.notes += [f"column {meaning.letter}: {note}" for note in numbers.notes]
     return numbers
 
@@ -88,6 +96,21 @@ def _reject_merged(work: TableWork, column: int, numbers: Numbers) -> None:
             reason = f"merged cells {area}: it does not say for which of them the value is"
             work.rejects.add(int(work.rows[place]), column, float(numbers.low[place]), reason)
             numbers.low[place] = numbers.high[place] = np.nan
+
+
+def _doubt_sign(work: TableWork, meaning: ColumnMeaning, numbers: Numbers) -> None:
+    """Quantities that are positive by definition and yet often exported with the sign of what they are derived from."""
+    known = numbers.low[np.isfinite(numbers.low)]
+    if (
+        meaning.parameter is not None
+        and meaning.parameter.key in _POSITIVE
+        and len(known)
+        and (known < 0).all()
+    ):
+        work.notes.append(
+            f"column {meaning.letter}: all values are negative, but a {meaning.parameter.title.lower()} is positive; "
+            "they were read as written"
+        )
 
 
 def _spread(work: TableWork, value: ColumnMeaning, numbers: Numbers, conditions: Columns) -> Spread:
