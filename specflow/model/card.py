@@ -30,7 +30,8 @@ class MarginBar(Document):
     """Limit, guard band and spread of results on one axis, in ``unit``; None where there is none.
 
     ``guard`` is the widest guard band (in the unit of margins). ``words`` says the same in one sentence; the texts are
-    the numbers as they are shown.
+    the numbers as they are shown. ``tone``: bad where a result is beyond the limit, doubtful where one is within the
+    guard band.
     """
 
     axis: BarAxis = BarAxis.VALUE
@@ -45,6 +46,7 @@ class MarginBar(Document):
     least_text: str = ""
     greatest_text: str = ""
     words: str = ""
+    tone: CellTone = CellTone.PLAIN
 
 
 class ProofCell(Document):

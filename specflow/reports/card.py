@@ -59,9 +59,7 @@ def proved_words(status: RequirementStatus) -> str:
     """Return how far a requirement is proved: failing and missing points are counted apart."""
     if status.n == 0:
         return "no required points"
-    return (
-        f"{share(status.k, status.n)} points proved, {status.n_failing} failing, {status.n_missing} missing"
-    )
+    return f"{share(status.k, status.n)} proved, {status.n_failing} failing, {status.n_missing} missing"
 
 
 def findings_about(findings: Sequence[Finding], code: str) -> tuple[Finding, ...]:

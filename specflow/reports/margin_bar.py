@@ -8,9 +8,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.model.card import BarAxis, MarginBar
+from specflow.model.report import CellTone
 from specflow.model.requirement import Requirement
 from specflow.model.verdict import PointResults, RequirementStatus
-from specflow.reports.figures import margin, with_unit
+from specflow.reports.figures import CLOSENESS, margin, rounded, with_unit
 
 Floats = NDArray[np.float64]
 
@@ -31,8 +32,9 @@ def margin_bar(requirement: Requirement, status: RequirementStatus) -> MarginBar
     lower = _several([found.lower[places] for found, places in known])
     upper = _several([found.upper[places] for found, places in known])
     guard = max(_widest_guard(found, places) for found, places in known)
+    tone = _tone(known)
     if len(lower) > 1 or len(upper) > 1:
-        return _over_margins(status.unit, [found.margin[places] for found, places in known], guard)
+        return _over_margins(status.unit, [found.margin[places] for found, places in known], guard, tone)
     return _over_values(
         requirement.limit.unit,
         status.unit,
@@ -41,7 +43,16 @@ def margin_bar(requirement: Requirement, status: RequirementStatus) -> MarginBar
         guard,
         np.concatenate([found.value_low[places] for found, places in known]),
         np.concatenate([found.value_high[places] for found, places in known]),
+        tone,
     )
+
+
+def _tone(known: Sequence[tuple[PointResults, NDArray[np.bool_]]]) -> CellTone:
+    if any((found.margin[places] < -CLOSENESS).any() for found, places in known):
+        return CellTone.BAD
+    if any((found.guarded_margin[places] < -CLOSENESS).any() for found, places in known):
+        return CellTone.DOUBTFUL
+    return CellTone.GOOD
 
 
 def _several(parts: Sequence[Floats]) -> Floats:
@@ -55,7 +66,7 @@ def _widest_guard(found: PointResults, places: NDArray[np.bool_]) -> float:
     return max(float(bands.max()), 0.0) if len(bands) else 0.0
 
 
-def _over_margins(unit: str, parts: Sequence[Floats], guard: float) -> MarginBar | None:
+def _over_margins(unit: str, parts: Sequence[Floats], guard: float, tone: CellTone) -> MarginBar | None:
     margins = np.concatenate(parts)
     margins = margins[np.isfinite(margins)]
     if not len(margins):
@@ -74,6 +85,7 @@ def _over_margins(unit: str, parts: Sequence[Floats], guard: float) -> MarginBar
         least_text=low,
         greatest_text=high,
         words="; ".join(words),
+        tone=tone,
     )
 
 
@@ -85,16 +97,15 @@ def _over_values(
     guard: float,
     low: Floats,
     high: Floats,
+    tone: CellTone,
 ) -> MarginBar | None:
     finite = np.concatenate([low[np.isfinite(low)], high[np.isfinite(high)]])
     if not len(finite):
         return None
     least, greatest = float(finite.min()), float(finite.max())
     texts = [with_unit(least, unit), with_unit(greatest, unit)]
-    spread = texts[0] if least == greatest else f"{texts[0]} to {texts[1]}"
-    bounds = (("at least", lower), ("at most", upper))
-    limits = [f"{word} {with_unit(value, unit)}" for word, value in bounds if value is not None]
-    words = [f"limit {' and '.join(limits)}" if limits else "no limit here", f"results {spread}"]
+    spread = texts[0] if least == greatest else f"{rounded(least)} to {texts[1]}"
+    words = [f"results {spread}", *(["no limit at these points"] if lower is None and upper is None else [])]
     return MarginBar(
         unit=unit,
         lower=lower,
@@ -107,8 +118,9 @@ def _over_values(
         least_text=texts[0],
         greatest_text=texts[1],
         words="; ".join([*words, *_guard_words(guard, tolerance)]),
+        tone=tone,
     )
 
 
 def _guard_words(guard: float, unit: str) -> list[str]:
-    return [f"guard band {with_unit(guard, unit)}"] if guard > 1e-9 else []
+    return [f"guard band {with_unit(guard, unit)}"] if guard > CLOSENESS else []

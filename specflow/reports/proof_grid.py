@@ -78,7 +78,7 @@ def verdict_words(verdict: Verdict, state: PointState) -> str:
     if verdict is Verdict.NONE:
         return "no evidence"
     unproved = state is PointState.DOUBTFUL and verdict <= Verdict.CONDITIONAL_PASS
-    return f"{verdict.words}, but it does not prove the point" if unproved else verdict.words
+    return f"{verdict.words}, but not proved" if unproved else verdict.words
 
 
 def proof_grids(
@@ -100,14 +100,15 @@ def proof_grids(
                 finder.fetch(set(found.tables))
             count = len(found.verdict) if found is not None else len(places)
             sheet = Sheet(requirement, status, points, count, found, lacking, finder)
-            grids.append(_grid(sheet, _title(activity, item, sheet)))
+            grids.append(_grid(sheet, _title(activity, item, sheet, len(status.activities))))
     return tuple(grids)
 
 
-def _title(activity: ActivityResult, item: str, sheet: Sheet) -> str:
+def _title(activity: ActivityResult, item: str, sheet: Sheet, activities: int) -> str:
     proved = sheet.found.k if sheet.found is not None else 0
-    who = f", item {item}" if item else ""
-    return f"{activity.activity}{who}: {share(proved, sheet.count)} points proved"
+    names = [activity.activity] if activities > 1 or not item else []
+    names += [f"item {item}"] if item else []
+    return f"{', '.join(names)}: {share(proved, sheet.count)} proved"
 
 
 def _grid(sheet: Sheet, title: str) -> ProofGrid:

@@ -1,0 +1,1 @@
+"""What fills the terminal: ``browse.py`` (tree and card) and ``help.py``."""

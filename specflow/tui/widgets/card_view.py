@@ -1,0 +1,93 @@
+"""The card of one requirement: everything about it, from its limit to the cell its number stands in."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from typing import ClassVar
+
+from textual.binding import Binding, BindingType
+from textual.containers import VerticalScroll
+from textual.content import Content
+from textual.widget import Widget
+from textual.widgets import Static
+
+from specflow.model.card import Card
+from specflow.tui.tones import STYLES
+from specflow.tui.widgets.facts import Facts
+from specflow.tui.widgets.findings import FindingsView
+from specflow.tui.widgets.margin_bar import MarginBarView
+from specflow.tui.widgets.proof_grid import ProofGridView
+from specflow.tui.widgets.proved_line import ProvedLine
+from specflow.tui.widgets.rule import Rule
+from specflow.tui.widgets.trail import TrailView
+
+
+class CardView(VerticalScroll):
+    """Shows one card at a time; scrolls."""
+
+    DEFAULT_CSS = """
+    CardView {
+        border: round $surface-lighten-2; padding: 0 1; border-title-color: $primary; background: $background;
+        border-subtitle-color: $text-muted; scrollbar-size-vertical: 1;
+    }
+    CardView:focus { border: round $primary; }
+    CardView:focus-within { border: round $primary; }
+    CardView > .title { text-style: bold; }
+    CardView > .text { height: auto; }
+    CardView > .caution { border-left: thick $warning; padding-left: 1; margin-top: 1; height: auto; }
+    """
+    BINDINGS: ClassVar[list[BindingType]] = [
+        Binding("j", "scroll_down", "down", show=False),
+        Binding("k", "scroll_up", "up", show=False),
+    ]
+    KEY_HELP = (("↑ ↓ page", "scroll the card"),)
+
+    def __init__(self) -> None:
+        super().__init__()
+        self.card: Card | None = None
+
+    async def show(self, card: Card) -> None:
+        """Show a card from its top; the same card again keeps its place."""
+        again = self.card is not None and self.card.id == card.id
+        place = self.scroll_offset.y if again else 0
+        self.card = card
+        self.border_title = card.id
+        self.border_subtitle = card.label
+        with self.app.batch_update():
+            await self.remove_children()
+            await self.mount_all(_parts(card))
+        self.call_after_refresh(self.scroll_to, y=place, animate=False)
+
+    async def show_words(self, words: str) -> None:
+        """Show a sentence where there is no card."""
+        self.card = None
+        self.border_title = self.border_subtitle = ""
+        await self.remove_children()
+        await self.mount(Static(Content(words), classes="text"))
+
+
+def _parts(card: Card) -> Iterator[Widget]:
+    yield Static(Content(card.title), classes="title")
+    yield Static(
+        Content.assemble((card.label, STYLES[card.tone]), (f"   limit: {card.limit_words}", "")),
+        classes="text",
+    )
+    yield ProvedLine(card.k, card.n, card.proved)
+    if card.bar is not None:
+        yield Rule("margin bar")
+        yield MarginBarView(card.bar)
+    if card.grids:
+        yield Rule("proof grid")
+        for grid in card.grids:
+            yield ProofGridView(grid)
+    if card.remarks:
+        yield Rule("remarks")
+        yield Static(Content("\n").join([Content(f"• {remark}") for remark in card.remarks]), classes="text")
+    yield Rule("facts")
+    yield Facts((*card.facts, ("As written", card.limit_text)))
+    yield Rule("trail")
+    yield TrailView(card.trail)
+    yield Rule(f"findings ({len(card.findings)})")
+    yield FindingsView(card.findings) if card.findings else Static(Content("none"), classes="text")
+    for caution in card.cautions:
+        yield Static(Content(f"Caution. {caution}"), classes="caution")

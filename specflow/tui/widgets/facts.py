@@ -1,0 +1,40 @@
+"""Names and values, one pair a line."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from textual.app import RenderResult
+from textual.content import Content
+from textual.geometry import Size
+from textual.widget import Widget
+
+
+class Facts(Widget):
+    """Values stand below each other; long ones are folded under themselves."""
+
+    DEFAULT_CSS = """
+    Facts { height: auto; }
+    """
+
+    def __init__(self, facts: Sequence[tuple[str, str]]) -> None:
+        super().__init__()
+        self.facts = facts
+
+    def get_content_height(self, container: Size, viewport: Size, width: int) -> int:
+        """Return the lines of all values as folded."""
+        return len(fact_lines(self.facts, width))
+
+    def render(self) -> RenderResult:
+        return Content("\n").join(fact_lines(self.facts, self.size.width))
+
+
+def fact_lines(facts: Sequence[tuple[str, str]], width: int) -> list[Content]:
+    """Set the pairs in ``width`` cells."""
+    name_width = max((len(name) for name, _ in facts), default=0) + 2
+    lines: list[Content] = []
+    for name, value in facts:
+        folded = Content(value).wrap(max(width - name_width, 10)) or [Content("")]
+        lines.append(Content.styled(f"{name:<{name_width}}", "$text-muted") + folded[0])
+        lines.extend(Content(" " * name_width) + rest for rest in folded[1:])
+    return lines

@@ -1,0 +1,68 @@
+"""Hand a terminal view what it shows: outlines of all requirements, and the card of one when it is asked for."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+from datetime import date
+
+from specflow.model.card import Card
+from specflow.model.outline import Outline
+from specflow.model.requirement import Requirement
+from specflow.reports.about import cautions
+from specflow.reports.card import requirement_card
+from specflow.reports.outline import outlines
+from specflow.reports.status import points_sentence
+from specflow.store import ProjectStore
+from specflow.workflows.evaluate_project import Evaluation, evaluate_project
+from specflow.workflows.subjects import not_found
+
+
+@dataclass(frozen=True, slots=True)
+class BrowseData:
+    """What is shown of a project at one revision. ``card`` makes the card of a requirement; it may take a moment."""
+
+    project: str
+    revision: int
+    as_of: str
+    totals: str
+    outlines: Sequence[Outline]
+    cautions: Sequence[str]
+    card: Callable[[str], Card]
+
+
+@dataclass(frozen=True, slots=True)
+class Browsing:
+    """A project that is being looked at. Both may be called from any thread, again and again."""
+
+    store: ProjectStore
+    as_of: date
+
+    def load(self) -> BrowseData:
+        """Judge the project as it is stored now."""
+        return browse_data(evaluate_project(self.store, self.as_of))
+
+    def revision(self) -> int:
+        """Return the project revision; another one than before calls for loading again."""
+        return self.store.revision
+
+
+def browse_data(evaluation: Evaluation) -> BrowseData:
+    """Return what is shown of an evaluated project."""
+    snapshot, results = evaluation.snapshot, evaluation.results
+
+    def card(code: str) -> Card:
+        requirement = snapshot.find(Requirement, code)
+        if requirement is None:
+            raise not_found("requirement", code, [one.id for one in snapshot.requirements])
+        return requirement_card(requirement, snapshot, results, evaluation.findings, evaluation.dictionary)
+
+    return BrowseData(
+        project=snapshot.project.name,
+        revision=snapshot.revision,
+        as_of=results.as_of,
+        totals=points_sentence(results, snapshot.requirements),
+        outlines=outlines(snapshot, results),
+        cautions=cautions(snapshot, evaluation.dictionary),
+        card=card,
+    )
