@@ -63,6 +63,14 @@ class DocumentError(SpecflowError):
     """A document that contradicts itself or the project: duplicate id, cycle, missing reference."""
 
 
+class CalculationError(SpecflowError):
+    """Figures that a law cannot take: lengths that differ, NaN, a loss below 0 dB, outside the range where it holds."""
+
+
+class InfeasibleError(CalculationError):
+    """A target that no figure of the asked-for part can meet; the message says by how much it is missed."""
+
+
 class StoreError(SpecflowError):
     """The project store cannot be opened, is locked, full, or of a newer schema."""
 
