@@ -3,9 +3,12 @@
 Where things live:
 
 - ``evaluate`` the entrance; ``workspace`` what many requirements share; ``status`` one requirement as a whole
-- ``standing`` may a record count; ``comparable`` may it be compared; ``records`` the readings of one quantity, stacked
-- ``readings`` readings judged against the limit; ``bandwidths`` masks that state theirs
+- ``standing`` may a record count; ``comparable`` may it be compared; ``residuals`` readings near an instrument's floor
+- ``records`` the readings of one quantity, tables stacked (``stacking``); ``map_choice`` whose conditions they state
+- ``limit_inputs`` what a limit is evaluated at; ``readings`` readings judged against it; ``judging`` by its shape;
+  ``populations`` statistics of many values; ``bandwidths`` limits that state theirs; ``model_range`` validated models
 - ``credit`` rank and credit of evidence; ``points`` what governs each point, by item; ``conflicts`` contradictions
+- ``alternatives`` limits with members on different quantities, put together
 - ``activity`` k of n and the governing point; ``assessment`` all activities of one requirement
 - ``applicability``, ``waiving``, ``decisions`` what people decided; ``compliance`` and ``closeout`` what follows
 - ``lower_level`` requirements met by their children; ``unmatched`` evidence that serves nothing

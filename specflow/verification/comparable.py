@@ -99,6 +99,13 @@ class Wanted:
     any_bandwidth: bool = False
     any_identity: bool = False
 
+    @property
+    def key(self) -> tuple[object, ...]:
+        """What makes two of them the same, quick to compare."""
+        one = self.quantity
+        identity = one.parameter, one.plane, one.statistic, one.bandwidth_hz, one.polarisation
+        return (*identity, self.unit, self.any_bandwidth, self.any_identity)
+
 
 def fit(
     table: EvidenceTable, column: ValueColumn, want: Wanted, block: Block | None, parameter: Parameter | None

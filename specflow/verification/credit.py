@@ -12,7 +12,8 @@ a later stage keeps its weight; one at an earlier stage counts like one on less 
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -85,8 +86,7 @@ def _spread(
     """Give every pair what its source and item have; ``kinds`` holds rank, credit, staleness, items fastest."""
     size = readings.size
     if records.all_accepted and len(set(kinds)) == 1:
-        rank, counts, stale = kinds[0]
-        return Credit(np.full(size, rank, np.int8), np.full(size, counts), np.full(size, stale), why)
+        return replace(_uniform(size, *kinds[0]), why=why)
     kind = records.item[readings.record]
     if len(records.sources) > 1:
         kind = kind + records.source[readings.record] * len(records.items)
@@ -98,6 +98,15 @@ def _spread(
         np.array(outdated, bool)[kind] | (standing == STALE),
         (*why, *records.reasons),
     )
+
+
+@lru_cache(maxsize=256)
+def _uniform(size: int, rank: int, counts: bool, stale: bool) -> Credit:
+    """Return the same for every pair; read-only, because many requirements share it."""
+    arrays = np.full(size, rank, np.int8), np.full(size, counts), np.full(size, stale)
+    for array in arrays:
+        array.setflags(write=False)
+    return Credit(*arrays)
 
 
 def _named(provers: Provers, workspace: Workspace) -> frozenset[str]:

@@ -18,14 +18,15 @@ D = TypeVar("D")
 
 @dataclass(frozen=True, slots=True)
 class Decisions:
-    """Decisions by requirement key; dispositions by subject key; ``allocated`` are keys of requirements handed down."""
+    """Decisions by requirement key; dispositions by subject key; ``allocated`` are the children that a
+    requirement was handed down to, by its key."""
 
     waivers: Mapping[str, Sequence[Waiver]]
     splits: Mapping[str, Sequence[DeclaredSplit]]
     approvals: Mapping[str, Sequence[Approval]]
     nonconformances: Mapping[str, Sequence[Nonconformance]]
     dispositions: Mapping[str, Sequence[Disposition]]
-    allocated: frozenset[str]
+    allocated: Mapping[str, Sequence[str]]
 
     @classmethod
     def of(cls, snapshot: Snapshot) -> Decisions:
@@ -36,7 +37,10 @@ class Decisions:
             _by(snapshot.all(Approval), lambda approval: approval.requirement),
             _by(snapshot.all(Nonconformance), lambda report: report.requirement),
             _by(snapshot.all(Disposition), lambda disposition: disposition.subject),
-            frozenset(code_key(allocation.parent) for allocation in snapshot.all(Allocation)),
+            {
+                key: [allocation.child for allocation in allocations]
+                for key, allocations in _by(snapshot.all(Allocation), lambda one: one.parent).items()
+            },
         )
 
     def latest_approval(self, requirement: str) -> Approval | None:

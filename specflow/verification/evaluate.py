@@ -28,7 +28,7 @@ def evaluate(
     workspace = Workspace(snapshot, dictionary, as_of)
     decisions = Decisions.of(snapshot)
     asked = None if only is None else {code_key(one) for one in only}
-    wanted = _wanted(snapshot, asked)
+    wanted = _wanted(snapshot, decisions, asked)
     workspace.fetch(requirement for requirement in wanted if not requirement.met_by_lower_level)
     statuses: dict[str, RequirementStatus] = {}
     for requirement in wanted:
@@ -42,7 +42,7 @@ def evaluate(
     return Results(as_of.isoformat(), statuses, unmatched(workspace))
 
 
-def _wanted(snapshot: Snapshot, asked: Collection[str] | None) -> Sequence[Requirement]:
+def _wanted(snapshot: Snapshot, decisions: Decisions, asked: Collection[str] | None) -> Sequence[Requirement]:
     """Return the requirements asked for and the children that some of them are met by."""
     if asked is None:
         return snapshot.requirements
@@ -54,12 +54,16 @@ def _wanted(snapshot: Snapshot, asked: Collection[str] | None) -> Sequence[Requi
             continue
         wanted[code_key(requirement.id)] = requirement
         if requirement.met_by_lower_level:
-            queue.extend(_children(requirement, snapshot))
+            queue.extend(_children(requirement, snapshot, decisions))
     return tuple(wanted.values())
 
 
-def _children(requirement: Requirement, snapshot: Snapshot) -> Sequence[Requirement]:
-    return snapshot.children_of.get(code_key(requirement.id), ())
+def _children(requirement: Requirement, snapshot: Snapshot, decisions: Decisions) -> Sequence[Requirement]:
+    """Return the requirements that name it as their parent, and those it was allocated to."""
+    key = code_key(requirement.id)
+    allocated = (snapshot.find(Requirement, child) for child in decisions.allocated.get(key, ()))
+    named = (*snapshot.children_of.get(key, ()), *(child for child in allocated if child is not None))
+    return tuple({code_key(child.id): child for child in named}.values())
 
 
 def _compute(
@@ -80,7 +84,7 @@ def _compute(
         path = above | {key}
         children = [
             _compute(child, statuses, workspace, decisions, path)
-            for child in _children(requirement, workspace.snapshot)
+            for child in _children(requirement, workspace.snapshot, decisions)
             if code_key(child.id) not in path
         ]
         status = status_by_children(requirement, children, workspace, decisions)

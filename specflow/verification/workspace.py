@@ -64,7 +64,7 @@ class Workspace:
     _matchings: dict[tuple[int, int], tuple[Points, Columns, Matched]] = field(default_factory=dict)
     _stacks: dict[tuple[str, ...], Columns] = field(default_factory=dict)
     _mapped: dict[tuple[int, int], tuple[ConditionMap, Columns, Columns]] = field(default_factory=dict)
-    _records: dict[tuple[str, Wanted], Records] = field(default_factory=dict)
+    _records: dict[tuple[str, tuple[object, ...]], Records] = field(default_factory=dict)
     _items: dict[str, tuple[NDArray[np.intp], tuple[str, ...]]] = field(default_factory=dict)
     _standings: dict[tuple[str, str], RowStanding] = field(default_factory=dict)
     _columns: dict[str, EvidenceColumns] = field(default_factory=dict)
@@ -179,7 +179,7 @@ class Workspace:
 
     def records(self, requirement: Requirement, want: Wanted) -> Records:
         """Return the readings of a quantity of the requirement's block; what may not be compared apart."""
-        key = code_key(requirement.block), want
+        key = code_key(requirement.block), want.key
         found = self._records.get(key)
         if found is None:
             found = self._records[key] = self._gathered(requirement.block, want)

@@ -7,13 +7,15 @@ from datetime import date
 
 import pytest
 
-from specflow.model.block import HardwareType
+from specflow.model.block import HardwareType, Tier
+from specflow.model.budget import Allocation
 from specflow.model.decision import Approval, DeclaredSplit, Disposition, Nonconformance
 from specflow.model.evidence import ItemChange, Supersession, Withdrawal
 from specflow.model.limit import Limit, LimitState, Undefined
 from specflow.model.requirement import DecisionRule, Method, Provers, RuleName, Stage
 from specflow.model.verdict import CloseOut, Compliance, Label, PointsState, Standing, Verdict
 from tests.builders import (
+    a_block,
     a_declared_value,
     a_requirement,
     a_waiver,
@@ -190,6 +192,7 @@ def test_an_inconclusive_point_outweighs_passes() -> None:
     assert status.verdict is Verdict.INCONCLUSIVE
     assert status.label is Label.INCONCLUSIVE
     assert (status.k, status.n_failing, status.n_missing) == (2, 0, 0)
+    assert any("known as an interval only" in remark for remark in status.remarks)
 
 
 # Rule 5: rank, point by point; see also test_credit and test_conflicts
@@ -347,6 +350,22 @@ def test_met_by_lower_level_alone_takes_the_worst_of_the_children(
     children = a_requirement(parents=("R-0",)), a_requirement("R-2", parents=("R-0",), limit=at_least(10))
     status = status_of(*children, parent(), requirement="R-0", T_1=some_evidence(values))
     assert status.compliance is compliance
+
+
+def test_children_by_allocation_count_like_children_that_name_their_parent() -> None:
+    link = Allocation(id="AL-1", parent="R-0", child="R-1", manual_reason="shared by hand")
+    status = status_of(parent(), link, a_requirement(), requirement="R-0", T_1=some_evidence([21, 18, 21]))
+    assert status.compliance is Compliance.NON_COMPLIANT
+
+
+def test_a_system_requirement_of_a_block_with_blocks_below_is_to_be_allocated() -> None:
+    system, blocks = a_requirement("R-0", tier=Tier.SYSTEM), (a_block(), a_block("MIXER", parent="LNA"))
+    assert status_of(system, *blocks, requirement="R-0").label is Label.UNALLOCATED
+    assert status_of(system, a_block(), requirement="R-0").label is not Label.UNALLOCATED
+    excused = system.model_copy(update={"needs_allocation": False})
+    assert status_of(excused, *blocks, requirement="R-0").label is not Label.UNALLOCATED
+    link = Allocation(id="AL-1", parent="R-0", child="R-1", manual_reason="shared by hand")
+    assert status_of(system, link, *blocks, requirement="R-0").label is not Label.UNALLOCATED
 
 
 def test_otherwise_a_failing_child_does_not_fail_its_parent() -> None:
