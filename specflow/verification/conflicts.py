@@ -27,6 +27,8 @@ Floats = NDArray[np.float64]
 MOST_CONFLICTS = 20
 _CLOSE = 1e-6
 _HALF = 0.5**0.5
+#: Up to so many readings every pair is compared; above, the extremes.
+_LARGE = 200
 
 
 def conflicts(bench: Bench, unit: str, tolerance_unit: str, policy: Policy) -> tuple[Conflict, ...]:
@@ -72,7 +74,29 @@ def _suspicious(bench: Bench, allowed: Floats) -> Iterator[NDArray[np.intp]]:
     rank = bench.credit.rank[rows].astype(np.intp)
     rows = rows[np.argsort(cell[rows] * 8 + rank, kind="stable")]
     key = cell[rows] * 8 + bench.credit.rank[rows]
-    yield from (group for group in np.split(rows, np.flatnonzero(np.diff(key)) + 1) if len(group) > 1)
+    for group in np.split(rows, np.flatnonzero(np.diff(key)) + 1):
+        yield from _same_elsewhere(bench, group) if len(group) > _LARGE else [group]
+
+
+def _same_elsewhere(bench: Bench, group: NDArray[np.intp]) -> Iterator[NDArray[np.intp]]:
+    """Split a large group by the conditions that its point does not name: only like readings are compared anyway.
+
+    Unlike in small groups, an unstated condition is here one more value.
+    """
+    record = bench.readings.record[group]
+    conditions = bench.records.conditions
+    compared = {name for axis in bench.points.axes for name in axis.names}
+    numbers = {name: values for name, values in conditions.numeric.items() if name not in compared}
+    words = {name: column.codes for name, column in conditions.text.items() if name not in compared}
+    codes = [
+        np.unique(values[record], return_inverse=True)[1] for values in (*numbers.values(), *words.values())
+    ]
+    if not codes:
+        yield group
+        return
+    order = np.lexsort(codes)
+    change = np.logical_or.reduce([np.diff(one[order]) != 0 for one in codes])
+    yield from np.split(group[order], np.flatnonzero(change) + 1)
 
 
 def _along_range(bench: Bench, cell: NDArray[np.intp]) -> tuple[NDArray[np.intp], int]:
@@ -92,6 +116,10 @@ def _along_range(bench: Bench, cell: NDArray[np.intp]) -> tuple[NDArray[np.intp]
 
 def _worst_pair(bench: Bench, group: NDArray[np.intp], allowed: Floats) -> tuple[int, int] | None:
     """Return the pair of a group that differs most beyond what is allowed, under conditions that agree."""
+    if len(group) > _LARGE:
+        half = allowed[group] * _HALF
+        values = bench.readings.low[group]
+        group = group[[(values - half).argmax(), (values + half).argmin()]]
     values, spread = bench.readings.low[group], allowed[group]
     beyond = np.abs(values[:, None] - values[None, :]) - np.hypot(spread[:, None], spread[None, :])
     records = bench.readings.record

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import numpy as np
 import pytest
 
 from specflow.model.conditions import Span
@@ -10,6 +11,7 @@ from specflow.model.verdict import Label
 from tests.builders import (
     a_conditions_set,
     a_dimension,
+    a_requirement,
     an_evidence_table,
     an_item,
     some_columns,
@@ -79,3 +81,18 @@ def test_readings_under_other_conditions_that_both_state_do_not_conflict() -> No
         T_2=some_evidence([22, 22, 22], u=0.1, conditions=hot),
     )
     assert not status.conflicts
+
+
+def test_a_long_table_without_required_conditions_is_compared_like_with_like_and_in_bounded_memory() -> None:
+    """50,000 readings serve one point; a matrix of all pairs would hold 20 GB."""
+    count = 50_000
+    frequency = np.linspace(20, 30, count)
+    rising = some_evidence(25 + frequency, u=0.1, conditions=some_columns(frequency=frequency))
+    anywhere = a_requirement(conditions=None)
+    assert not status_of(anywhere, T_1=rising).conflicts
+    doubled = np.repeat(frequency[: count // 2], 2)
+    values = 25 + doubled
+    values[40_001] += 1.0
+    contradicted = some_evidence(values, u=0.1, conditions=some_columns(frequency=doubled))
+    (conflict,) = status_of(anywhere, T_1=contradicted).conflicts
+    assert {conflict.first.row, conflict.second.row} == {40_000, 40_001}
