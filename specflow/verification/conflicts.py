@@ -9,6 +9,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from itertools import islice
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -34,7 +35,8 @@ _LARGE = 200
 def conflicts(bench: Bench, unit: str, tolerance_unit: str, policy: Policy) -> tuple[Conflict, ...]:
     """Return the conflicts among the readings of one activity, one a point and item: the pair that differs most."""
     allowed = _expanded(bench, unit, policy)
-    found = (_worst_pair(bench, group, allowed) for group in _suspicious(bench, allowed))
+    groups = (group for group in _suspicious(bench, allowed) if len(group) > 1)
+    found = (_worst_pair(bench, group, allowed) for group in groups)
     worst = islice((pair for pair in found if pair is not None), MOST_CONFLICTS)
     return tuple(_conflict(bench, first, second, allowed, tolerance_unit) for first, second in worst)
 
@@ -88,9 +90,8 @@ def _same_elsewhere(bench: Bench, group: NDArray[np.intp]) -> Iterator[NDArray[n
     compared = {name for axis in bench.points.axes for name in axis.names}
     numbers = {name: values for name, values in conditions.numeric.items() if name not in compared}
     words = {name: column.codes for name, column in conditions.text.items() if name not in compared}
-    codes = [
-        np.unique(values[record], return_inverse=True)[1] for values in (*numbers.values(), *words.values())
-    ]
+    every: list[NDArray[Any]] = [*numbers.values(), *words.values()]
+    codes = [np.unique(values[record], return_inverse=True)[1] for values in every]
     if not codes:
         yield group
         return
