@@ -85,7 +85,7 @@ def _count(columns: EvidenceColumns) -> int:
 
 
 def _ask_about_remarks(work: TableWork) -> None:
-    """A remark between rows of data that states something, as "T = 85 °C" over a group of rows, must not be passed over."""
+    """Ask about remarks between rows of data that state something, as "T = 85 °C" over a group of rows."""
     for remark in work.table.between:
         if states_something(remark.text):
             cell = f"row {remark.row}"

@@ -89,7 +89,6 @@ class LayoutMapping:
     header_rows: int = 1
     include_hidden_rows: bool = False
     keep_summary_rows: bool = False
-    skip_rows: str = ""
     stated: Mapping[str, str] = field(default_factory=dict)
     columns: Sequence[ColumnMapping] = ()
     pivot: PivotMapping | None = None
@@ -192,7 +191,6 @@ def write_mapping(mapping: LayoutMapping, reasons: Mapping[str, str] | None = No
         "header_rows",
         "include_hidden_rows",
         "keep_summary_rows",
-        "skip_rows",
     ):
         value = getattr(mapping, name)
         if value not in ("", False) and (name, value) != ("header_rows", 1):
@@ -225,8 +223,13 @@ def _toml(value: object) -> str:
         return "{ " + ", ".join(f"{_key(key)} = {_toml(one)}" for key, one in value.items()) + " }"
     if isinstance(value, str):
         escaped = value.replace("\\", "\\\\").replace('"', '\\"')
-        return '"' + "".join(c if c.isprintable() else f"\\u{ord(c):04x}" for c in escaped) + '"'
+        return '"' + "".join(c if c.isprintable() else _escaped(c) for c in escaped) + '"'
     return repr(value)
+
+
+def _escaped(character: str) -> str:
+    number = ord(character)
+    return f"\\u{number:04x}" if number < 0x10000 else f"\\U{number:08x}"
 
 
 def _key(key: str) -> str:

@@ -9,6 +9,7 @@ from dataclasses import dataclass, field, replace
 from specflow.importers.measured.header_text import HeaderText, known_unit
 from specflow.model.parameter import Parameter
 from specflow.parameters import Candidate, Dictionary, suits
+from specflow.parameters.headers import tokens
 from specflow.units import Kind
 
 _POLARISATION = re.compile(
@@ -78,9 +79,8 @@ def name_quantity(
     if not found:
         return NamedQuantity(polarisation=polarisation)
     first = found[0]
-    named = NamedQuantity(
-        tuple(found), plane=first.plane, statistic=first.statistic, polarisation=polarisation
-    )
+    statistic = first.statistic or _said_statistic(name, first.parameter)
+    named = NamedQuantity(tuple(found), plane=first.plane, statistic=statistic, polarisation=polarisation)
     return _doubted(_placed(named, [place, *extra], planes), first, parts, unit, dictionary)
 
 
@@ -91,6 +91,14 @@ def density_of(parameter: Parameter, unit: str, dictionary: Dictionary) -> Param
         return None
     density = dictionary.get(f"{parameter.key}_density")
     return density if density is not None and suits(density, unit) else None
+
+
+def _said_statistic(name: str, parameter: Parameter) -> str:
+    """The statistic that a name says although it is part of an alias: "EVM rms"."""
+    words = set(tokens(name))
+    return next(
+        (one for one in ("rms", "peak", "median") if one in words and one in parameter.statistics), ""
+    )
 
 
 def _match(dictionary: Dictionary, name: str, unit: str) -> list[Candidate]:

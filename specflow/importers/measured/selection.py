@@ -85,7 +85,7 @@ def select_rows(
         summary = _summary_rows(table, meanings, rows)
         if summary:
             marked = np.isin(rows, summary)
-            reason = "a row of a summary, a limit or a note, no reading (keep_summary_rows = true in a mapping reads it)"
+            reason = "a summary, limit or note, no reading (keep_summary_rows = true in a mapping reads it)"
             _reject(table, rows[marked], reason, rejects)
             rows = rows[~marked]
     return rows, notes

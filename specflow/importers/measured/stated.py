@@ -57,8 +57,9 @@ NAMES: Mapping[str, tuple[str, ...]] = {
 
 #: What is said above the first table of a sheet holds for those below it, too; conditions and uncertainties do not.
 _OF_THE_SHEET = frozenset(
-    ["block", "item", "method", "stage", "set_up", "performer", "date", "procedure", "procedure_revision", "model", "model_version", "validated", "hardware"]
-)
+    ("block", "item", "method", "stage", "set_up", "performer", "date", "procedure", "procedure_revision", "model",
+     "model_version", "validated", "hardware")
+)  # fmt: skip
 
 _SPELLINGS = {
     re.sub(r"[\s_./-]+", "", spelling): name

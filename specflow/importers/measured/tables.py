@@ -120,11 +120,24 @@ def _header_row(grid: Grid, top: int, recognises: Recognises) -> int | None:
         if len(texts) < 2 or not _has_numbers_below(grid, row, texts):
             continue
         known = sum(map(recognises, texts.values()))
-        if known == len(texts) or known >= max(2, (len(texts) + 1) // 2):
+        if _are_headers(texts, recognises):
+            if _is_above_headers(grid, row, recognises):
+                continue  # a pair of key and value, both of which happen to be known words
             return row
         if best is None or (known, len(texts)) > best[0]:
             best = (known, len(texts)), row
     return None if best is None else best[1]
+
+
+def _are_headers(texts: dict[int, str], recognises: Recognises) -> bool:
+    known = sum(map(recognises, texts.values()))
+    return len(texts) >= 2 and (known == len(texts) or known >= max(2, (len(texts) + 1) // 2))
+
+
+def _is_above_headers(grid: Grid, row: int, recognises: Recognises) -> bool:
+    """Whether the next row is a row of headers, too, and no units row."""
+    below = _words(grid, row + 1) if row < grid.last_row else {}
+    return _are_headers(below, recognises) and _units_row(grid, row + 1, _headers(grid, row, 1)) is None
 
 
 def _words(grid: Grid, row: int) -> dict[int, str]:

@@ -42,7 +42,11 @@ def text(path: Path, content: str) -> Path:
 
 
 def measure(
-    path: Path, *documents: Document, stated: Mapping[str, str] | None = None, mapping: str = "", **options: Any
+    path: Path,
+    *documents: Document,
+    stated: Mapping[str, str] | None = None,
+    mapping: str = "",
+    **options: Any,
 ) -> Measurements:
     """Read a file for the project of the tests, with further documents."""
     snapshot = a_snapshot(*PROJECT, *documents)

@@ -1,7 +1,7 @@
 """Plain tables that others published come in with a mapping at most, and say what their origin says.
 
-The facts were computed independently of this program, with csv and numpy. Two of the files may not be copied here; their
-tests run where the folder lies beside the checkout.
+The facts were computed independently of this program, with csv and numpy. Two of the files may not be copied here;
+their tests run where the folder lies beside the checkout.
 """
 
 from __future__ import annotations
@@ -81,7 +81,11 @@ def test_spill_over_of_a_dish_with_the_frequency_in_a_second_header_row() -> Non
         is_it = (conditions.numeric["frequency"] == frequency) & (conditions.numeric["zenith"] == zenith)
         words = conditions.text["polarisation"]
         [row] = [row for row in np.flatnonzero(is_it).tolist() if words.word(row) == polarisation]
-        return float(values[row]), int(table.columns.source_rows[row]), table.columns.extra[SOURCE_COLUMN].word(row)
+        return (
+            float(values[row]),
+            int(table.columns.source_rows[row]),
+            table.columns.extra[SOURCE_COLUMN].word(row),
+        )
 
     assert at(1410, 0, "H") == (1.6712, 4, "T")
     assert at(1410, 0, "V") == (1.6827, 4, "U")

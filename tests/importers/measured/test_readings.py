@@ -1,0 +1,187 @@
+"""Cells: read rightly, counted as blank with their reason, or rejected with their address."""
+
+from __future__ import annotations
+
+import math
+from datetime import datetime
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+
+from tests.importers.measured.make import book, low, one_table, questions, rejected, taken, text
+from tests.importers.readers.workbooks import by_hand
+
+
+def values_of(path: Path, header: str, cells: list[Any], formats: dict[int, str] | None = None) -> Any:
+    def change(sheet: Any) -> None:
+        for row, code in (formats or {}).items():
+            sheet.cell(row, 2).number_format = code
+
+    rows = [["f (GHz)", header], *([27.5, cell] for cell in cells)]
+    return one_table(book(path / "a.xlsx", rows, change=change))
+
+
+def test_bounds_and_ranges_are_intervals(tmp_path: Path) -> None:
+    table = taken(values_of(tmp_path, "Isolation (dB)", [60, "> 60", "<90", "55 .. 58", "−3,5"]))
+    assert table.columns is not None
+    arrays = table.columns.values["Isolation"]
+    assert list(arrays.low) == [60, 60, -math.inf, 55, -3.5]
+    assert list(arrays.high) == [60, math.inf, 90, 58, -3.5]
+    assert table.values == 5
+
+
+def test_all_points_share_one_array(tmp_path: Path) -> None:
+    table = taken(values_of(tmp_path, "Gain (dB)", [20, 21]))
+    assert table.columns is not None
+    assert table.columns.values["Gain"].high is table.columns.values["Gain"].low
+
+
+def test_blanks_are_counted_by_reason(tmp_path: Path) -> None:
+    table = taken(values_of(tmp_path, "Gain (dB)", [20, "N/A", "—", "OL", "n.m.", None]))
+    assert table.values == 1 and table.rejected == ()
+    assert table.blank == {
+        "not applicable: N/A": 1,
+        "nothing written: —": 1,
+        "overload of the instrument: OL": 1,
+        "not measured: n.m.": 1,
+        "nothing written": 1,
+    }
+
+
+@pytest.mark.parametrize(
+    ("cell", "words"),
+    [
+        ("NaN", "not a number"),
+        ("inf", "not a number"),
+        ("abc", "'abc' is not a number"),
+        ("20*", "note"),
+        ("20 ± 1", "uncertainty"),
+        ("~20", "approximate"),
+        (True, "truth value"),
+        (datetime(2026, 3, 1), "a date or time"),
+        ("=1+", "never calculated"),
+        ("#DIV/0!", "error"),
+        (9.91e37, "placeholder"),
+        ("20 dBm", "the cell says dBm, the column dB"),
+        ("1,234", "can be read as"),
+    ],
+)
+def test_what_is_no_reading_is_rejected_with_its_address(tmp_path: Path, cell: Any, words: str) -> None:
+    table = taken(values_of(tmp_path, "Gain (dB)", [20, cell]))
+    assert words in rejected(table)["B3"] and table.rejected_cells == 1
+    assert table.values == 1 and table.document is not None
+    assert [one.cell for one in table.document.left_out] == ["B3"]
+
+
+def test_percent_formatted_cells_under_percent_are_what_they_show(tmp_path: Path) -> None:
+    table = taken(values_of(tmp_path, "EVM (%)", [0.031, 0.029], {2: "0.0%", 3: "0.0%"}))
+    assert low(table, "EVM") == [3.1, 2.9]
+    assert "0.031 is shown as 3.1 %" in table.document.values[0].conversions[0]  # type: ignore[union-attr]
+
+
+def test_plain_numbers_under_percent_are_as_written(tmp_path: Path) -> None:
+    assert low(taken(values_of(tmp_path, "EVM (% rms)", [3.1, 2.9])), "EVM") == [3.1, 2.9]
+
+
+def test_percent_formats_in_part_of_a_column_are_asked_about(tmp_path: Path) -> None:
+    assert "1 cells are in a percent format (from row 2)" in questions(
+        values_of(tmp_path, "EVM (%)", [0.031, 2.9], {2: "0.0%"})
+    )
+
+
+def test_a_percent_format_under_another_unit_is_asked_about(tmp_path: Path) -> None:
+    assert "percent format under the unit dB" in questions(
+        values_of(tmp_path, "Gain (dB)", [0.031, 0.03], {2: "0%", 3: "0%"})
+    )
+
+
+def test_the_unit_may_stand_in_the_number_format(tmp_path: Path) -> None:
+    table = taken(values_of(tmp_path, "Pout", [30, 31], {2: '0.0" dBm"', 3: '0.0" dBm"'}))
+    value = table.document.values[0]  # type: ignore[union-attr]
+    assert (value.unit, value.unit_from) == ("dBm", "the number format of B2")
+
+
+def test_a_number_format_with_another_unit_rejects_the_cell(tmp_path: Path) -> None:
+    table = taken(values_of(tmp_path, "Pout (dBm)", [30, 1], {3: '0.0" dBW"'}))
+    assert rejected(table) == {"B3": "the number format says dBW, the column dBm"}
+
+
+def test_a_scaled_number_format_rejects_the_cell(tmp_path: Path) -> None:
+    table = taken(values_of(tmp_path, "Supply current (mA)", [30, 12000], {3: "0,"}))
+    assert "another size" in rejected(table)["B3"]
+
+
+def test_the_unit_may_stand_in_every_cell(tmp_path: Path) -> None:
+    table = taken(values_of(tmp_path, "Gain", ["20 dB", "21dB", "<18 dB"]))
+    assert table.document is not None and table.document.values[0].unit_from == "the text of the cells"
+    assert "the cells carry different units: dB, dBm" in questions(
+        values_of(tmp_path, "Pout", ["20 dB", "21 dBm"])
+    )
+
+
+def test_numbers_stored_as_text_are_read_and_reported(tmp_path: Path) -> None:
+    table = taken(values_of(tmp_path, "Gain (dB)", [20, "21"]))
+    assert low(table, "Gain") == [20, 21] and "column B: 1 numbers stored as text were read" in table.notes
+
+
+def test_merged_conditions_hold_for_their_rows_and_merged_values_for_none(tmp_path: Path) -> None:
+    def merge(sheet: Any) -> None:
+        sheet.merge_cells("A2:A3")
+        sheet.merge_cells("C2:C3")
+
+    rows = [["T_amb (°C)", "f (GHz)", "Gain (dB)"], [-40, 27.5, 20], [None, 30, None], [85, 30, 18]]
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows, change=merge)))
+    assert table.columns is not None
+    assert list(table.columns.conditions.numeric["temperature_ambient"]) == [-40, -40, 85]
+    assert rejected(table)["C2"].startswith("merged cells C2:C3")
+    assert np.isnan(low(table, "Gain")[0])
+
+
+def test_a_blank_condition_is_unstated_and_said(tmp_path: Path) -> None:
+    rows = [["T_amb (°C)", "f (GHz)", "Gain (dB)"], [-40, 27.5, 20], [None, 30, 19]]
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows)))
+    assert table.columns is not None and np.isnan(table.columns.conditions.numeric["temperature_ambient"][1])
+    assert any("states no temperature ambient in 1 of 2 rows" in note for note in table.notes)
+    filled = 'format = 1\n[[table]]\n[[table.column]]\nheader = "T_amb (°C)"\nfill_down = true\n'
+    table = taken(one_table(tmp_path / "a.xlsx", mapping=filled))
+    assert table.columns is not None
+    assert list(table.columns.conditions.numeric["temperature_ambient"]) == [-40, -40]
+
+
+def test_a_bound_is_no_condition(tmp_path: Path) -> None:
+    rows = [["f (GHz)", "Gain (dB)"], ["<27.5", 20], [28, 21]]
+    assert "must be one value" in rejected(taken(one_table(book(tmp_path / "a.xlsx", rows))))["A2"]
+
+
+def test_many_cells_of_one_kind_are_one_entry_and_all_are_counted(tmp_path: Path) -> None:
+    lines = "".join(f"{27 + row / 1000},bad\n" for row in range(500))
+    table = one_table(text(tmp_path / "a.csv", "f (GHz),Gain (dB)\n27,20\n" + lines))
+    assert [one.cell for one in table.rejected] == ["B3:B502"] and table.rejected_cells == 500
+
+
+def test_an_uncalculated_formula_and_an_error_cell_of_any_writer(tmp_path: Path) -> None:
+    rows = (
+        '<row r="1"><c r="A1" t="inlineStr"><is><t>f (GHz)</t></is></c>'
+        '<c r="B1" t="inlineStr"><is><t>Gain (dB)</t></is></c></row>'
+        '<row r="2"><c r="A2"><v>27.5</v></c><c r="B2"><f>1+1</f></c></row>'
+        '<row r="3"><c r="A3"><v>28</v></c><c r="B3" t="e"><v>#REF!</v></c></row>'
+        '<row r="4"><c r="A4"><v>29</v></c><c r="B4"><v>20</v></c></row>'
+    )
+    table = taken(one_table(by_hand(tmp_path / "a.xlsx", rows)))
+    reasons = rejected(table)
+    assert "never calculated" in reasons["B2"] and "#REF!" in reasons["B3"]
+
+
+@given(st.lists(st.floats(-200, 200).map(lambda value: round(value, 6)), min_size=1, max_size=8))
+def test_numbers_come_in_as_they_were_written(tmp_path_factory: Any, numbers: list[float]) -> None:
+    path = tmp_path_factory.mktemp("numbers")
+    table = taken(values_of(path, "Gain (dB)", list(numbers)))
+    assert low(table, "Gain") == numbers
+    lines = "".join(f"{27 + row};{str(value).replace('.', ',')}\n" for row, value in enumerate(numbers))
+    if all("e" not in str(value) for value in numbers):
+        table = taken(one_table(text(path / "a.csv", "f (GHz);Gain (dB)\n" + lines)))
+        assert low(table, "Gain") == numbers

@@ -1,0 +1,148 @@
+"""Tables are found below titles, and end where something else begins."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+from tests.importers.measured.make import book, low, measure, one_table, questions, rejected, taken, text
+
+
+def test_header_below_title_facts_and_blank_rows(tmp_path: Path) -> None:
+    rows = [
+        ["Gain of the LNA"],
+        ["DUT:", "LNA-1", "Date:", "2026-03-02"],
+        [],
+        ["f (GHz)", "Gain (dB)"],
+        [27.5, 20.1],
+        [30, 19.9],
+        [],
+        ["Note: after warm-up"],
+    ]
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows), stated={}))
+    assert (table.title, table.place, table.rows) == ("Gain of the LNA", "A4:B6", 2)
+    assert table.document is not None and table.columns is not None
+    assert str(table.document.performed_on) == "2026-03-02"
+    assert list(table.columns.source_rows) == [5, 6]
+    assert table.document.values[0].column == 2
+
+
+def test_a_table_away_from_the_corner_keeps_its_addresses(tmp_path: Path) -> None:
+    rows = [[], [None, None, "f (GHz)", "Gain (dB)"], [None, None, 27.5, 20.1]]
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows)))
+    assert table.document is not None and table.columns is not None
+    assert (table.document.values[0].column, int(table.columns.source_rows[0])) == (4, 3)
+
+
+def test_units_row(tmp_path: Path) -> None:
+    rows = [["Frequency", "Gain", "Mode"], ["[GHz]", "[dB]", ""], [27.5, 20, "a"]]
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows)))
+    assert table.document is not None
+    assert (table.document.values[0].unit, table.document.values[0].unit_from) == ("dB", "the units row, B2")
+
+
+def test_header_and_units_row_that_disagree_are_asked_about(tmp_path: Path) -> None:
+    rows = [["f (GHz)", "Gain (dB)"], ["GHz", "dBm"], [27.5, 20]]
+    assert "the header says dB, the units row dBm" in questions(one_table(book(tmp_path / "a.xlsx", rows)))
+
+
+def test_a_table_goes_on_after_a_blank_row(tmp_path: Path) -> None:
+    rows = [["f (GHz)", "Gain (dB)"], [27.5, 20], [], [28, 21], [None, None], [30, 22]]
+    assert low(taken(one_table(book(tmp_path / "a.xlsx", rows))), "Gain") == [20, 21, 22]
+
+
+def test_tables_below_each_other_with_what_is_said_above_each(tmp_path: Path) -> None:
+    rows = [
+        ["Date: 2026-03-02"],
+        ["DUT: LNA-1"],
+        ["Ambient: 23 °C"],
+        ["f (GHz)", "Gain (dB)"],
+        [27.5, 20],
+        [],
+        ["DUT: LNA-2"],
+        ["f (GHz)", "NF (dB)"],
+        [27.5, 1.2],
+    ]
+    first, second = map(taken, measure(book(tmp_path / "a.xlsx", rows), stated={}).tables)
+    assert first.columns is not None and second.columns is not None and second.document is not None
+    assert (first.columns.items.word(0), second.columns.items.word(0)) == ("LNA-1", "LNA-2")
+    assert second.document.performed_on is not None  # the date is that of the sheet
+    assert "temperature_ambient" in first.columns.conditions.numeric
+    assert "temperature_ambient" not in second.columns.conditions.numeric  # said of the first table only
+
+
+def test_a_condition_between_the_rows_is_asked_about(tmp_path: Path) -> None:
+    rows = [["Ambient: 23 °C"], ["f (GHz)", "Gain (dB)"], [27.5, 20], [], ["Ambient: 85 °C"], [27.5, 19]]
+    assert "'Ambient: 85 °C' stands among the rows" in questions(one_table(book(tmp_path / "a.xlsx", rows)))
+
+
+def test_repeated_headers_are_stepped_over(tmp_path: Path) -> None:
+    rows = [["f (GHz)", "Gain (dB)"], [27.5, 20], ["f (GHz)", "Gain (dB)"], [28, 21]]
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows)))
+    assert low(table, "Gain") == [20, 21] and "row 3 repeats the headers" in table.notes
+
+
+def test_numbers_without_a_header_are_asked_about(tmp_path: Path) -> None:
+    rows = [["f (GHz)", "Gain (dB)"], [27.5, 20, 7]]
+    assert "column C: numbers without a header" in questions(one_table(book(tmp_path / "a.xlsx", rows)))
+
+
+def test_numbers_below_a_table_that_belong_to_none_are_an_error(tmp_path: Path) -> None:
+    rows = [["f (GHz)", "Gain (dB)", "Vdd (V)", "Mode"], [27.5, 20, 5, "a"], [], [7], []]
+    read = measure(book(tmp_path / "a.xlsx", rows))
+    assert low(taken(read.tables[0]), "Gain") == [20]
+    assert [finding.severity for finding in read.findings] == ["error"]
+    assert "row 4" in read.findings[0].message
+
+
+def test_summary_rows_are_rejected_and_a_mode_called_max_is_not(tmp_path: Path) -> None:
+    rows = [
+        ["Mode", "f (GHz)", "Gain (dB)"],
+        ["Max", 27.5, 20],
+        ["Min", 27.5, 19],
+        ["Mean", None, 19.5],
+        ["Limit", None, 18],
+    ]
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows)))
+    assert low(table, "Gain") == [20, 19]
+    assert set(rejected(table)) == {"A4", "A5"} and table.rejected_cells == 2
+
+
+def test_hidden_rows_are_left_out_unless_asked_for(tmp_path: Path) -> None:
+    def hide(sheet: object) -> None:
+        sheet.row_dimensions[3].hidden = True  # type: ignore[attr-defined]
+
+    path = book(tmp_path / "a.xlsx", [["f (GHz)", "Gain (dB)"], [27.5, 20], [28, 21]], change=hide)
+    table = taken(one_table(path))
+    assert low(table, "Gain") == [20] and "hidden" in rejected(table)["A3"]
+    assert low(taken(one_table(path, include_hidden_rows=True)), "Gain") == [20, 21]
+
+
+def test_semicolons_and_decimal_commas(tmp_path: Path) -> None:
+    path = text(tmp_path / "a.csv", "# DUT: SN LNA-1\nfreq_ghz;Gain in dB\n27,5;20,1\n28,75;<18,5\n")
+    table = taken(one_table(path, stated={}))
+    assert table.columns is not None
+    gain = table.columns.values["Gain"]
+    assert (list(gain.low), list(gain.high)) == ([20.1, float("-inf")], [20.1, 18.5])
+    assert (list(table.columns.conditions.numeric["frequency"]), table.columns.items.word(0)) == (
+        [27.5, 28.75],
+        "LNA-1",
+    )
+    assert list(table.columns.source_rows) == [3, 4]
+
+
+def test_a_sheet_without_a_table_is_named(tmp_path: Path) -> None:
+    read = measure(book(tmp_path / "a.xlsx", [["only prose"], ["and more"]], sheet="Notes"))
+    assert read.tables == () and "sheet Notes: no table" in read.skipped[0]
+    assert [finding.rule for finding in read.findings] == ["attach-no-table"]
+
+
+def test_a_hidden_sheet_is_skipped_unless_named(tmp_path: Path) -> None:
+    from openpyxl import load_workbook
+
+    path = book(tmp_path / "a.xlsx", [["f (GHz)", "Gain (dB)"], [27.5, 20]], sheet="Old")
+    workbook = load_workbook(path)
+    workbook.create_sheet("New")["A1"] = "x"
+    workbook["Old"].sheet_state = "hidden"
+    workbook.save(path)
+    assert measure(path).tables == () and "Old" in measure(path).skipped[0]
+    assert len(measure(path, sheets=("old",)).tables) == 1
