@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import lru_cache
 from typing import TypeVar
 
 import numpy as np
@@ -194,9 +195,25 @@ def _items(parts: Sequence[Held]) -> tuple[NDArray[np.intp], tuple[str, ...]]:
 
 def _numbered(sizes: Sequence[int]) -> Rows:
     if len(sizes) == 1:
-        return np.zeros(sizes[0], np.int32)
+        return _zeros(sizes[0])
     return np.repeat(np.arange(len(sizes), dtype=np.int32), sizes)
 
 
 def _positions(sizes: Sequence[int]) -> Rows:
-    return _joined([np.arange(size, dtype=np.int32) for size in sizes])
+    return _joined([_counted(size) for size in sizes])
+
+
+@lru_cache(maxsize=64)
+def _zeros(size: int) -> Rows:
+    """Return zeros, read-only: most quantities come from one column of one table, and tables have like sizes."""
+    return _shared(np.zeros(size, np.int32))
+
+
+@lru_cache(maxsize=64)
+def _counted(size: int) -> Rows:
+    return _shared(np.arange(size, dtype=np.int32))
+
+
+def _shared(array: Rows) -> Rows:
+    array.setflags(write=False)
+    return array
