@@ -16,7 +16,7 @@ from specflow.limits.conversion import difference_unit
 from specflow.limits.tree import tree_names
 from specflow.model.limit import Limit
 from specflow.model.requirement import Activity, Requirement
-from specflow.model.verdict import Conflict, Mismatch, RecordRef, Standing
+from specflow.model.verdict import Conflict, Mismatch, RecordRef, Standing, Verdict
 from specflow.verification.activity import ActivityOutcome, summarise
 from specflow.verification.alternatives import Member, members_of, put_together
 from specflow.verification.conflicts import conflicts
@@ -107,7 +107,25 @@ def _assessment(
         tuple(one for bench in benches for one in conflicts(bench, unit, tolerance, workspace.policy)),
         _mismatches(grounds, workspace),
         tuple(one for ground in grounds for one in _ambiguous(ground)),
-        tuple(dict.fromkeys(note for one in grounds for note in (*one.records.notes, *one.matching.notes))),
+        tuple(dict.fromkeys(note for one in grounds for note in _notes(one))),
+    )
+
+
+def _notes(ground: Ground) -> tuple[str, ...]:
+    """Return what was done to values and conditions, and how many readings are too wide to decide."""
+    return (*_too_wide(ground.readings), *ground.records.notes, *ground.matching.notes)
+
+
+def _too_wide(readings: Readings) -> tuple[str, ...]:
+    """Say that intervals (<46, or a bandwidth that is only bounded) meet the limit with a part of them only."""
+    if readings.high is readings.low:
+        return ()
+    wide = (readings.low != readings.high) & (readings.verdict == Verdict.INCONCLUSIVE)
+    count = int(np.count_nonzero(wide))
+    if not count:
+        return ()
+    return (
+        f"{count} reading{'s' * (count != 1)} known as an interval only, a part of which meets the limit",
     )
 
 

@@ -39,7 +39,7 @@ Array = NDArray[np.float64]
 Rows = NDArray[np.intp]
 Codes = NDArray[np.int8]
 _NO_BOUND = np.array([np.nan])
-_PASS, _FAIL, _INCONCLUSIVE = int(Verdict.PASS), int(Verdict.FAIL), int(Verdict.INCONCLUSIVE)
+_PASS, _FAIL = int(Verdict.PASS), int(Verdict.FAIL)
 
 
 @dataclass(frozen=True, slots=True)
@@ -135,7 +135,7 @@ def judge(records: Records, served: Served, judgement: Judgement) -> Readings:
     guarded = margin - shift - guard
     unsure = np.isnan(shift) if isinstance(shift, np.ndarray) else np.zeros((), bool)
     _overrule(verdict, unsure | lost, inadmissible)
-    whys = [*why, *_unsure_words(u, judgement, lost), *_straddling_words(low, high, verdict)]
+    whys = [*why, *_unsure_words(u, judgement, lost)]
     if not bounds.applies.all() or bounds.unknown.any():
         whys.extend(_outside(bounds, verdict, margin, guarded))
     if why:
@@ -258,18 +258,6 @@ def _unsure_words(u: Array, judgement: Judgement, lost: NDArray[np.bool_]) -> li
     if np.count_nonzero(lost):
         words.append("the limit states a measurement bandwidth, and some readings state none")
     return words
-
-
-def _straddling_words(low: Array, high: Array, verdict: Codes) -> list[str]:
-    """Say that intervals (<46, or a bandwidth that is only bounded) meet the limit with a part of them only."""
-    if high is low:
-        return []
-    count = int(np.count_nonzero((low != high) & (verdict == _INCONCLUSIVE)))
-    return (
-        [f"{count} reading{'s' * (count != 1)} known as an interval only, a part of which meets the limit"]
-        if count
-        else []
-    )
 
 
 def _outside(bounds: Bounds, verdict: Codes, margin: Array, guarded: Array) -> list[str]:
