@@ -192,16 +192,18 @@ def _refuse_unsettled(preview: AttachPreview, decision: Decision) -> None:
             "no measurement table was found", where=where, hint="; ".join(preview.measurements.skipped)
         )
     if preview.unresolved and (not decision.take_rest or not preview.new_tables):
-        first = preview.unresolved[0].questions[0]
+        table = preview.unresolved[0]
+        first = table.questions[0]
+        count = sum(len(one.questions) for one in preview.unresolved)
+        open_ones = _counted(count, "question is open", "questions are open")
         raise DocumentError(
-            f"{sum(len(table.questions) for table in preview.unresolved)} questions are open; nothing was stored. "
-            f"The first: {first.what}",
-            where=f"{where}, {preview.unresolved[0].sheet} {first.cell}".rstrip(", "),
+            f"{open_ones}; nothing was stored. {'It' if count == 1 else 'The first'}: {first.what}",
+            where=", ".join(filter(None, [where, table.sheet, first.cell])),
             hint=first.remedy,
         )
     if preview.rejected_cells and not decision.take_rest:
         raise DocumentError(
-            f"{preview.rejected_cells} cells or rows are rejected; nothing was stored",
+            f"{_counted(preview.rejected_cells, 'cell or row is', 'cells or rows are')} rejected; nothing was stored",
             where=where,
             hint="mend them in the file, or say --take-rest to store the rest; what is left out stays a finding",
         )
@@ -216,6 +218,10 @@ def _refuse_unsettled(preview: AttachPreview, decision: Decision) -> None:
     if empty and not preview.new_tables and not preview.known:
         raise DocumentError("no row of the table is left to store", where=f"{where}, {empty[0].place}",
                             hint="see the rejected rows")  # fmt: skip
+
+
+def _counted(count: int, one: str, many: str) -> str:
+    return f"{count} {one if count == 1 else many}"
 
 
 def _refuse_unsaid(preview: AttachPreview, decision: Decision) -> Mapping[int, Sequence[Replacement]]:

@@ -48,7 +48,7 @@ def preview_sentence(preview: AttachPreview) -> str:
     parts = [f"{len(new)} new table{'s' * (len(new) != 1)}", f"{preview.values} values"]
     questions = sum(len(table.questions) for table in preview.unresolved)
     parts += [f"{questions} open question{'s' * (questions != 1)}"] if questions else []
-    parts += [f"{preview.rejected_cells} rejected cells or rows"] if preview.rejected_cells else []
+    parts += [f"{preview.rejected_cells} rejected"] if preview.rejected_cells else []
     return f"{preview.path.name}: {', '.join(parts)}"
 
 
@@ -142,7 +142,11 @@ def _questions(table: MeasuredTable) -> ReportTable:
 def _rejected(table: MeasuredTable) -> ReportTable:
     rows = [_row(one.cell, (one.cell, one.text, one.reason), CellTone.DOUBTFUL) for one in table.rejected]
     return _table(
-        "rejected", "Rejected", f"{table.rejected_cells} cells or rows", ("Cell", "Text", "Reason"), rows
+        "rejected",
+        "Rejected",
+        f"{table.rejected_cells} cells (or rows) hold something that cannot be evidence.",
+        ("Cell", "Text", "Reason"),
+        rows,
     )
 
 

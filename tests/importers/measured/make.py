@@ -14,7 +14,7 @@ from specflow.model.base import Document
 from specflow.parameters import load_dictionary
 from tests.builders import a_block, a_conditions_set, a_requirement, a_snapshot, an_item
 
-Rows = Sequence[Sequence[Any]]
+Rows = Sequence[Any]
 
 PROJECT = (a_block(), a_block("PA"), an_item(), an_item("LNA-2"), a_conditions_set(), a_requirement())
 SAID = {"block": "LNA", "item": "LNA-1"}

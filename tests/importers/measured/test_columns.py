@@ -133,7 +133,7 @@ def test_a_level_beside_other_values_is_a_condition_or_a_result(tmp_path: Path) 
 
 
 def test_a_column_that_says_the_same_in_every_row_speaks_of_the_table(tmp_path: Path) -> None:
-    rows = [
+    rows: list[list[Any]] = [
         ["f (GHz)", "Spurious (dBm)", "RBW (kHz)", "Set-up"],
         [27.5, -60, 100, "bench 3"],
         [28, -61, 100, "bench 3"],

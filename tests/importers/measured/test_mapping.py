@@ -149,7 +149,7 @@ def test_a_parameter_that_is_unknown_is_named_with_the_nearest(tmp_path: Path) -
     assert "'gian'" in asked and "gain" in asked
 
 
-names = st.text(st.characters(blacklist_categories=("Cs",)), min_size=1, max_size=12).filter(str.strip)
+names = st.text(st.characters(exclude_categories=["Cs"]), min_size=1, max_size=12).filter(str.strip)
 
 
 @given(names, names, st.booleans(), st.none() | st.floats(0.5, 4))
