@@ -12,7 +12,7 @@ from textual.theme import Theme
 from textual.timer import Timer
 
 from specflow.errors import SpecflowError
-from specflow.tui.messages import CardMade, DataLoaded, RequirementChosen, RevisionSeen, WorkFailed
+from specflow.tui.messages import CardMade, CardWanted, DataLoaded, RevisionSeen, WorkFailed
 from specflow.tui.screens.browse import BrowseScreen
 from specflow.workflows.browse import BrowseData
 
@@ -22,7 +22,7 @@ PAUSE_SECONDS = 0.05  # who runs through the tree does not want a card of every 
 THEME = Theme(
     name="specflow",
     primary="#8ab6d6",
-    secondary="#6f8fa6",
+    secondary="#8ba4b5",
     accent="#c9a46a",
     foreground="#dbe4ea",
     background="#0f161c",
@@ -106,7 +106,7 @@ class BrowseApp(App[None]):
         if self._data is not None and message.revision != self._data.revision:
             self.load_data()
 
-    def on_requirement_chosen(self, message: RequirementChosen) -> None:
+    def on_card_wanted(self, message: CardWanted) -> None:
         """Make the card a moment later, if the cursor is still there."""
         self._wanted = message.id
         if self._pause is not None:
@@ -117,15 +117,18 @@ class BrowseApp(App[None]):
         if self._data is not None and self._wanted:
             self.make_card(self._data, self._wanted)
 
-    async def on_card_made(self, message: CardMade) -> None:
+    def on_card_made(self, message: CardMade) -> None:
         """Show the card, unless the project or the cursor went on."""
         if message.data is self._data and message.card.id.casefold() == self._wanted.casefold():
-            await self.browse.show_card(message.card)
+            self.browse.show_card(message.card)
 
     def on_work_failed(self, message: WorkFailed) -> None:
-        """Say what could not be done."""
-        self.browse.requirements.loading = False
-        self.notify(f"{message.what}. {message.hint}".strip(), severity="error", timeout=10)
+        """Say what could not be done: in place of the card when there is nothing else to show."""
+        words = f"{message.what}. {message.hint}".strip()
+        if self._data is None:
+            self.browse.show_failure(words)
+        else:
+            self.notify(words, severity="error", timeout=10)
 
     def action_reload(self) -> None:
         """Load the project again."""

@@ -50,6 +50,14 @@ class RequirementChosen(Message):
         self.id = id
 
 
+class CardWanted(Message):
+    """The card of this requirement is to be shown."""
+
+    def __init__(self, id: str) -> None:
+        super().__init__()
+        self.id = id
+
+
 class SearchChanged(Message):
     """The words to look for changed."""
 

@@ -11,7 +11,7 @@ STYLES = {
     CellTone.GOOD: "$success",
     CellTone.DOUBTFUL: "$warning",
     CellTone.BAD: "bold $error",
-    CellTone.QUIET: "$text-muted",
+    CellTone.QUIET: "$secondary",
 }
 POINT_MARKS = {
     PointState.PROVED: "■",
@@ -23,5 +23,5 @@ POINT_STYLES = {
     PointState.PROVED: "$success",
     PointState.FAILING: "bold $error",
     PointState.DOUBTFUL: "$warning",
-    PointState.MISSING: "$text-muted",
+    PointState.MISSING: "$secondary",
 }

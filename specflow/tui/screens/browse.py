@@ -12,7 +12,7 @@ from textual.screen import Screen
 from textual.widgets import Footer
 
 from specflow.model.card import Card
-from specflow.tui.messages import RequirementChosen, SearchChanged, SearchEnded
+from specflow.tui.messages import CardWanted, RequirementChosen, SearchChanged, SearchEnded
 from specflow.tui.screens.help import HelpScreen
 from specflow.tui.widgets.card_view import CardView
 from specflow.tui.widgets.heading import Heading
@@ -49,6 +49,7 @@ class BrowseScreen(Screen[None]):
         ("v", "order of the tree: by requirement, by block, by source"),
         ("g", "to the proof grid of the card; again: to its next one"),
         ("tab", "from the tree to the card, its grids, and back; escape: to the tree"),
+        ("?", "this help"),
         ("r", "load the project again (it is done by itself when it changed)"),
         ("q", "quit"),
     )
@@ -97,29 +98,32 @@ class BrowseScreen(Screen[None]):
             self.requirements.focus()
         self._refresh_tree()
 
-    async def show_card(self, card: Card) -> None:
-        """Show the card if it is still the one asked for."""
-        if self.requirements.chosen.casefold() == card.id.casefold():
-            kept = self._focused_grid()
-            await self.card_view.show(card)
-            grids = list(self.card_view.query(ProofGridView))
-            if kept is not None and kept < len(grids):
-                grids[kept].focus(scroll_visible=False)
+    def show_failure(self, words: str) -> None:
+        """Say why there is nothing to show."""
+        self.requirements.loading = False
+        self.card_view.show_words(f"{words}\n\nr tries again, q quits.")
 
-    def _focused_grid(self) -> int | None:
-        grids = list(self.card_view.query(ProofGridView))
-        return grids.index(self.focused) if isinstance(self.focused, ProofGridView) else None
+    def show_card(self, card: Card) -> None:
+        """Show the card if it is still the one asked for."""
+        if self.requirements.chosen.casefold() != card.id.casefold():
+            return
+        shown = self.card_view.card
+        if (shown is None or shown.id != card.id) and self.card_view.focused_grid is not None:
+            self.requirements.focus()  # the grid that had the keys goes away
+        self.card_view.show(card)
 
     def _refresh_tree(self) -> None:
         if self._data is not None:
             outline = self._data.outlines[self._order % len(self._data.outlines)]
             self.requirements.show(outline, words=self._words, open_only=self._open_only)
 
-    async def on_requirement_chosen(self, message: RequirementChosen) -> None:
-        """Say what to do where no requirement is under the cursor; the app brings cards."""
+    def on_requirement_chosen(self, message: RequirementChosen) -> None:
+        """Ask the app for a card; say what to do where no requirement is under the cursor."""
+        message.stop()
+        # Posted, not bubbled: a message that a callback of the app has sent goes no further than to here.
+        self.app.post_message(CardWanted(message.id))
         if not message.id:
-            message.stop()
-            await self.card_view.show_words(self._nothing_chosen())
+            self.card_view.show_words(self._nothing_chosen())
 
     def _nothing_chosen(self) -> str:
         data = self._data
@@ -169,7 +173,7 @@ class BrowseScreen(Screen[None]):
         if not grids:
             self.notify("There is no proof grid on this card.")
             return
-        here = self._focused_grid()
+        here = self.card_view.focused_grid
         grids[0 if here is None else (here + 1) % len(grids)].focus()
 
     def action_tree(self) -> None:

@@ -65,7 +65,7 @@ class HelpScreen(ModalScreen[None]):
         ]
         lines.append(Content(f"  {LIMIT} {GUARD} {OUTSIDE}     limit, its guard band, and what lies outside"))
         lines.append(Content(""))
-        lines += [Content.styled(caution, "$text-muted") for caution in self._cautions]
+        lines += [Content.styled(caution, "$secondary") for caution in self._cautions]
         return lines
 
 

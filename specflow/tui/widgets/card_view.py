@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 from typing import ClassVar
 
+from textual.app import ComposeResult
 from textual.binding import Binding, BindingType
 from textual.containers import VerticalScroll
 from textual.content import Content
@@ -45,25 +46,45 @@ class CardView(VerticalScroll):
     def __init__(self) -> None:
         super().__init__()
         self.card: Card | None = None
+        self._words = ""
+        self._place = 0
 
-    async def show(self, card: Card) -> None:
+    def show(self, card: Card) -> None:
         """Show a card from its top; the same card again keeps its place."""
         again = self.card is not None and self.card.id == card.id
-        place = self.scroll_offset.y if again else 0
+        self._place = round(self.scroll_offset.y) if again else 0
         self.card = card
         self.border_title = card.id
         self.border_subtitle = card.label
-        with self.app.batch_update():
-            await self.remove_children()
-            await self.mount_all(_parts(card))
-        self.call_after_refresh(self.scroll_to, y=place, animate=False)
+        self.refresh(recompose=True)
 
-    async def show_words(self, words: str) -> None:
+    def show_words(self, words: str) -> None:
         """Show a sentence where there is no card."""
         self.card = None
+        self._words = words
         self.border_title = self.border_subtitle = ""
-        await self.remove_children()
-        await self.mount(Static(Content(words), classes="text"))
+        self.refresh(recompose=True)
+
+    def compose(self) -> ComposeResult:
+        if self.card is None:
+            yield Static(Content(self._words), classes="text")
+        else:
+            yield from _parts(self.card)
+
+    async def recompose(self) -> None:
+        """Set the parts anew; the grid that had the keys keeps them."""
+        kept = self.focused_grid
+        await super().recompose()
+        grids = list(self.query(ProofGridView))
+        if kept is not None and grids:
+            grids[min(kept, len(grids) - 1)].focus(scroll_visible=False)
+        self.call_after_refresh(self.scroll_to, y=self._place, animate=False)
+
+    @property
+    def focused_grid(self) -> int | None:
+        """The number of the grid that has the keys, None when none has."""
+        grids = list(self.query(ProofGridView))
+        return next((place for place, grid in enumerate(grids) if grid.has_focus), None)
 
 
 def _parts(card: Card) -> Iterator[Widget]:

@@ -35,6 +35,6 @@ def fact_lines(facts: Sequence[tuple[str, str]], width: int) -> list[Content]:
     lines: list[Content] = []
     for name, value in facts:
         folded = Content(value).wrap(max(width - name_width, 10)) or [Content("")]
-        lines.append(Content.styled(f"{name:<{name_width}}", "$text-muted") + folded[0])
+        lines.append(Content.styled(f"{name:<{name_width}}", "$secondary") + folded[0])
         lines.extend(Content(" " * name_width) + rest for rest in folded[1:])
     return lines

@@ -33,5 +33,5 @@ class Heading(Widget):
         for part in others:
             if len(shown) + len(part) + 3 > room:
                 break
-            shown += Content.styled(" │ ", "$text-muted") + Content(part)
+            shown += Content.styled(" │ ", "$secondary") + Content(part)
         return shown

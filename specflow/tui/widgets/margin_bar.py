@@ -39,7 +39,7 @@ def bar_lines(bar: MarginBar, width: int) -> list[Content]:
         _limit_line(bar, scale),
         _result_line(bar, scale),
         _number_line(bar, scale),
-        Content.styled(bar.words, "$text-muted"),
+        Content.styled(bar.words, "$secondary"),
     ]
 
 
@@ -77,7 +77,7 @@ def _limit_line(bar: MarginBar, scale: Scale) -> Content:
         cells[place + 1 :] = OUTSIDE * (scale.width - place - 1)
         cells[start:place] = GUARD * (place - start)
         cells[place] = LIMIT
-    return _styled("".join(cells), {OUTSIDE: "$text-muted", GUARD: "$warning", LIMIT: "bold $primary"})
+    return _styled("".join(cells), {OUTSIDE: "$secondary", GUARD: "$warning", LIMIT: "bold $primary"})
 
 
 def _result_line(bar: MarginBar, scale: Scale) -> Content:

@@ -16,8 +16,8 @@ from textual.widget import Widget
 from specflow.model.card import PointState, ProofCell, ProofGrid
 from specflow.tui.tones import POINT_MARKS, POINT_STYLES
 
-NARROWEST = 2  # cells of a point: its mark and a blank
-DETAIL_LINES = 6
+NARROWEST = 3  # cells of a point: its mark, and room for the brackets that the cursor is
+DETAIL_LINES, WIDE_DETAIL_LINES, WIDE = 6, 4, 60  # lines below a grid, and where it is wide
 
 
 @dataclass(frozen=True, slots=True)
@@ -65,7 +65,7 @@ class ProofGridView(Widget, can_focus=True):
     def get_content_height(self, container: Size, viewport: Size, width: int) -> int:
         """Return the lines of titles, rows, legend and detail."""
         layout = Layout.of(self.grid, width)
-        return 2 + layout.header_lines + layout.row_lines + DETAIL_LINES
+        return 2 + layout.header_lines + layout.row_lines + _detail_lines(width)
 
     def render(self) -> RenderResult:
         layout = Layout.of(self.grid, max(self.size.width, 12))
@@ -152,7 +152,7 @@ class Layout:
         count = max((len(row) for row in grid.cells), default=0)
         title = max((len(one) + 1 for one in grid.row_titles if one), default=0)
         title = min(title, width // 2)
-        words = [len(cell.margin) + 3 for row in grid.cells for cell in row if cell]
+        words = [len(cell.margin) + 4 for row in grid.cells for cell in row if cell]
         wide = max([*words, *(len(one) + 1 for one in grid.column_titles)], default=NARROWEST)
         room = width - title
         cell = wide if count * wide <= room else NARROWEST
@@ -177,12 +177,12 @@ def _header(grid: ProofGrid, layout: Layout, cursor: Place) -> list[Content]:
     first = layout.first(grid, cursor)
     titles = grid.column_titles[first : first + layout.columns]
     if layout.cell > NARROWEST:
-        words = "".join(f"{title:<{layout.cell}}" for title in titles)
+        words = " " + "".join(f"{title:<{layout.cell}}" for title in titles)
     else:
         words = f"{titles[0]} … {titles[-1]}" if len(titles) > 1 else titles[0]
         more = len(grid.column_titles) - len(titles)
-        words += f" (‹ › {more} more)" if more else ""
-    return [Content.styled((" " * layout.title + words)[: layout.width], "$text-muted")]
+        words = f" {words} (‹ › {more} more)" if more else f" {words}"
+    return [Content.styled((" " * layout.title + words)[: layout.width], "$secondary")]
 
 
 def _rows(grid: ProofGrid, layout: Layout, cursor: Place, focused: bool) -> list[Content]:
@@ -192,7 +192,7 @@ def _rows(grid: ProofGrid, layout: Layout, cursor: Place, focused: bool) -> list
         first = layout.first(grid, cursor)
         starts = range(0, len(row), layout.columns) if layout.folded else (first,)
         for start in starts:
-            line = Content.styled(_cut(title, layout.title - 1).ljust(layout.title), "$text-muted")
+            line = Content.styled(_cut(title, layout.title - 1).ljust(layout.title), "$secondary")
             for column in range(start, min(start + layout.columns, len(row))):
                 line += _cell(row[column], layout.cell, Place(number, column) == cursor, focused)
             lines.append(line)
@@ -207,14 +207,14 @@ def _cut(text: str, width: int) -> str:
 
 def _cell(cell: ProofCell | None, width: int, here: bool, focused: bool) -> Content:
     if cell is None:
-        return Content(" " * width)
+        return Content(("[ ]" if here else "").ljust(width))
     words = POINT_MARKS[cell.state]
     if width > NARROWEST and cell.value:
         words += f" {cell.margin}"
-    style = POINT_STYLES[cell.state]
-    if here:
-        style += " reverse" if focused else " underline"
-    return Content.styled(words, style) + Content(" " * (width - len(words)))
+    opens, closes = ("[", "]") if here else (" ", " ")
+    brackets = "bold $accent" if focused else "$secondary"
+    rest = " " * (width - len(words) - 2)
+    return Content.assemble((opens, brackets), (words, POINT_STYLES[cell.state]), (closes, brackets), rest)
 
 
 def _legend(counts: Counter[PointState]) -> Content:
@@ -229,7 +229,7 @@ def _detail(cell: ProofCell | None, note: str, width: int) -> list[Content]:
     """Say the point under the cursor; always the same number of lines, so that nothing below it moves."""
     lines: list[Content] = []
     if cell is None:
-        lines.append(Content.styled("not required", "$text-muted"))
+        lines.append(Content.styled("not required", "$secondary"))
     else:
         lines += Content.assemble(("▸ ", "$primary"), (cell.words, "bold")).wrap(width)
         said = [cell.verdict, cell.value, f"guarded {cell.margin}" if cell.value else ""]
@@ -240,7 +240,12 @@ def _detail(cell: ProofCell | None, note: str, width: int) -> list[Content]:
             if words:
                 lines += Content(words).wrap(width)
     if note:
-        lines += Content.styled(note, "$text-muted").wrap(width)
-    if len(lines) > DETAIL_LINES:
-        lines = [*lines[: DETAIL_LINES - 1], lines[DETAIL_LINES - 1].truncate(width - 1) + Content("…")]
-    return [*lines, *[Content("")] * (DETAIL_LINES - len(lines))]
+        lines += Content.styled(note, "$secondary").wrap(width)
+    most = _detail_lines(width)
+    if len(lines) > most:
+        lines = [*lines[: most - 1], lines[most - 1].truncate(width - 1) + Content("…")]
+    return [*lines, *[Content("")] * (most - len(lines))]
+
+
+def _detail_lines(width: int) -> int:
+    return WIDE_DETAIL_LINES if width >= WIDE else DETAIL_LINES

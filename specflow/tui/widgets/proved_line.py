@@ -31,5 +31,5 @@ class ProvedLine(Widget):
         filled = self.k * width // self.n if self.n else 0
         if self.k:
             filled = max(filled, 1)
-        bar = Content.assemble(("▰" * filled, "$success"), ("▱" * (width - filled), "$text-muted"))
+        bar = Content.assemble(("▰" * filled, "$success"), ("▱" * (width - filled), "$secondary"))
         return Content("\n").join([bar, Content(self.words)])

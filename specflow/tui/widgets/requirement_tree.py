@@ -16,8 +16,6 @@ from specflow.model.outline import Outline, OutlineEntry
 from specflow.model.report import CellTone
 from specflow.tui.messages import RequirementChosen
 
-MARK_WIDTH = 8
-
 
 class RequirementTree(Tree[OutlineEntry]):
     """The requirements of an outline; filtered, what stands above a hit stays in view."""
@@ -30,6 +28,8 @@ class RequirementTree(Tree[OutlineEntry]):
     }
     RequirementTree:focus { border: round $primary; }
     RequirementTree.wide { width: 52; }
+    RequirementTree > .tree--cursor { background: $surface-lighten-1; color: $foreground; text-style: none; }
+    RequirementTree:focus > .tree--cursor { background: $primary 30%; color: $foreground; text-style: bold; }
     """
     BINDINGS: ClassVar[list[BindingType]] = [
         Binding("left", "close_or_parent", "close", show=False),
@@ -61,7 +61,9 @@ class RequirementTree(Tree[OutlineEntry]):
         total = sum(bool(entry.id) for entry in outline.entries)
         self.border_title = outline.title
         self.border_subtitle = self._subtitle(hits, total)
-        self.call_after_refresh(self._return_to, kept)
+        asked = code_key(words).split()
+        first = next((entry.id for entry in shown if entry.id and _says(entry, asked)), "") if asked else ""
+        self.call_after_refresh(self._return_to, first or kept)
 
     def _subtitle(self, hits: int, total: int) -> str:
         filters = [

@@ -20,6 +20,5 @@ class Rule(Widget):
 
     def render(self) -> RenderResult:
         rest = max(self.size.width - len(self.title) - 4, 0)
-        return Content.assemble(
-            ("── ", "$surface-lighten-3"), (self.title, "$primary"), (f" {'─' * rest}", "$surface-lighten-3")
-        )
+        line = "$surface-lighten-3"
+        return Content.assemble(("── ", line), (self.title, "$primary"), (f" {'─' * rest}", line))
