@@ -90,6 +90,21 @@ def intercept(value: Figures, name: str) -> Floats:
     return array
 
 
+def unchecked(value: Figures, name: str) -> Floats:
+    """Return ``value`` as float64, none as +∞; only for laws that look at their results for bad figures."""
+    return _numbers(_without_none(value), name)
+
+
+def without(value: Figures, position: int, name: str, filled: float) -> Floats:
+    """Return a copy of ``value`` with the unknown at ``position`` set to ``filled``; none elsewhere becomes +∞."""
+    array = _numbers(_without_none(value), name).copy()
+    if array.ndim == 0 or not 0 <= position < array.shape[0]:
+        places = f"0 to {array.shape[0] - 1}" if array.ndim and array.shape[0] else "there are none"
+        raise CalculationError(f"{name} has no position {position}", hint=f"positions count from 0: {places}")
+    array[position] = filled
+    return array
+
+
 def chain(**figures: Floats) -> tuple[Floats, ...]:
     """Return the figures of one chain with equally many axes, after checking that they have the same positions."""
     names, arrays = list(figures), list(figures.values())
