@@ -165,7 +165,11 @@ class GoverningPoint:
 
 @dataclass(frozen=True, slots=True)
 class ActivityResult:
-    """One activity: k of n points proved, by the item that is shown, and by each item."""
+    """One activity: k of n points proved, by the item that is shown, and by each item.
+
+    Of the points of those who must prove it, ``n_missing`` have nothing that counts; apart from those that fail,
+    ``n_without_evidence`` have no reading at all and ``n_undecided`` have readings that neither prove nor fail.
+    """
 
     activity: str
     state: PointsState
@@ -180,6 +184,8 @@ class ActivityResult:
     smallest_margin: GoverningPoint | None
     marginal: bool
     why: tuple[str, ...] = ()
+    n_without_evidence: int = 0
+    n_undecided: int = 0
 
 
 @dataclass(frozen=True, slots=True)
@@ -216,6 +222,16 @@ class RequirementStatus:
     unallocated: bool = False
     waived_by: tuple[str, ...] = ()
     waivers_exceeded: tuple[str, ...] = ()
+
+    @property
+    def n_without_evidence(self) -> int:
+        """Points that do not fail and have no reading at all."""
+        return sum(activity.n_without_evidence for activity in self.activities)
+
+    @property
+    def n_undecided(self) -> int:
+        """Points that have readings which neither prove them nor fail."""
+        return sum(activity.n_undecided for activity in self.activities)
 
 
 @dataclass(frozen=True, slots=True)

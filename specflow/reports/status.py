@@ -14,13 +14,13 @@ from specflow.reports.figures import COMPLIANCE_TONES, DASH, label_tone, margin,
 
 STATUS_COLUMNS = (
     ReportColumn(key="id", title="Requirement", width=16),
-    ReportColumn(key="title", title="Title", width=34),
-    ReportColumn(key="block", title="Block", width=14),
-    ReportColumn(key="limit", title="Limit", width=22),
+    ReportColumn(key="state", title="State", width=24),
     ReportColumn(key="proved", title="Proved", align=Align.RIGHT, width=10),
     ReportColumn(key="guarded_margin", title="Guarded margin", align=Align.RIGHT, width=14),
     ReportColumn(key="governed_at", title="Governed at", width=34),
-    ReportColumn(key="state", title="State", width=24),
+    ReportColumn(key="title", title="Title", width=34),
+    ReportColumn(key="block", title="Block", width=14),
+    ReportColumn(key="limit", title="Limit", width=22),
 )
 
 
@@ -39,13 +39,13 @@ def _status_row(requirement: Requirement, status: RequirementStatus, depth: int)
     governing = status.governing
     cells = (
         ReportCell(text=requirement.id),
-        text(requirement.title),
-        text(requirement.block),
-        text(requirement.limit.text),
+        ReportCell(text=status.label.value, tone=label_tone(status.label)),
         ReportCell(text=share(status.k, status.n), number=float(status.k)),
         margin(governing.guarded_margin, governing.unit) if governing else text(""),
         text(_place(governing.words, governing.item)) if governing else text(""),
-        ReportCell(text=status.label.value, tone=label_tone(status.label)),
+        text(requirement.title),
+        text(requirement.block),
+        text(requirement.limit.text),
     )
     return ReportRow(id=requirement.id, cells=cells, depth=depth)
 
@@ -133,17 +133,25 @@ def close_out_totals(results: Results, requirements: Iterable[Requirement]) -> R
 
 
 def points_sentence(results: Results, requirements: Iterable[Requirement]) -> str:
-    """Return the total of required points, with every denominator said."""
+    """Return the total of required points, with every denominator said; the parts add up, or it is said why not."""
     statuses = [results.of(requirement.id) for requirement in requirements]
     counted = [status for status in statuses if status.compliance is not Compliance.NOT_APPLICABLE]
     k = sum(status.k for status in counted)
     n = sum(status.n for status in counted)
     failing = sum(status.n_failing for status in counted)
-    missing = sum(status.n_missing for status in counted)
+    without = sum(status.n_without_evidence for status in counted)
+    undecided = sum(status.n_undecided for status in counted)
+    twice = k + failing + without + undecided - n
     return (
-        f"{k} of {n} required points proved, {failing} failing, {missing} missing "
+        f"{k} of {n} required points proved, {failing} failing{_twice(twice)}, {without} without evidence, "
+        f"{undecided} not decided (inconclusive or without credit) "
         f"({len(counted)} applicable requirements of {len(statuses)})"
     )
+
+
+def _twice(number: int) -> str:
+    """Say how many fails stand at points that another item's evidence counts for as well."""
+    return f" ({number} of them at points where another item is counted too)" if number else ""
 
 
 def _total_row(name: str, count: int, of: int, tone: CellTone) -> ReportRow:

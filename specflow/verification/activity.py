@@ -66,6 +66,7 @@ def summarise(
     verdicts = _verdicts(counts, failing, missing_items)
     k = sum(one.results.k for one in chosen)
     governing = _governing(points, chosen, failing, unit)
+    without, undecided = _undecided(provers, chosen, failing)
     result = ActivityResult(
         activity.id,
         _state(activity, k, points.size * needed, items),
@@ -80,6 +81,8 @@ def summarise(
         _smallest(points, chosen, failing, unit, governing),
         any(np.count_nonzero(one.marginal) > 0 for one in chosen),
         tuple(why),
+        without + points.size * missing_items,
+        undecided,
     )
     counted = any(np.count_nonzero(one.counts) > 0 for one in items)
     return ActivityOutcome(
@@ -142,6 +145,25 @@ def _count_failing(provers: Provers, failing: Sequence[tuple[ItemPoints, Flags]]
     if provers.rule == "any one":
         return int(np.count_nonzero(np.logical_or.reduce([flags for _, flags in failing])))
     return sum(int(np.count_nonzero(flags)) for _, flags in failing)
+
+
+def _undecided(
+    provers: Provers, chosen: Sequence[ItemPoints], failing: Sequence[tuple[ItemPoints, Flags]]
+) -> tuple[int, int]:
+    """Count points that are neither proved nor fail: those without any reading, and those that have one.
+
+    Where any one item will do, a point fails when any item's open fail stands there; else each item has its own.
+    """
+    without = undecided = 0
+    for one in chosen:
+        rest = ~one.proved
+        for other, flags in failing:
+            if provers.rule == "any one" or other is one:
+                rest = rest & ~flags
+        empty = one.results.table < 0
+        without += int(np.count_nonzero(rest & empty))
+        undecided += int(np.count_nonzero(rest & ~empty))
+    return without, undecided
 
 
 def _state(activity: Activity, k: int, n: int, items: Sequence[ItemPoints]) -> PointsState:

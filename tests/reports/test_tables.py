@@ -162,10 +162,28 @@ def test_totals_print_their_denominators() -> None:
         "0 of 8",
     ]
     assert points_sentence(RESULTS, ORDERED) == (
-        "28 of 52 required points proved, 4 failing, 24 missing (8 applicable requirements of 8)"
+        "28 of 52 required points proved, 4 failing (4 of them at points where another item is counted too), "
+        "23 without evidence, 1 not decided (inconclusive or without credit) (8 applicable requirements of 8)"
     )
+    others = [one for one in ORDERED if one.id != "PA-1"]
+    assert points_sentence(RESULTS, others).startswith(
+        "20 of 43 required points proved, 0 failing, 22 without evidence, 1 not decided"
+    ), "20 + 0 + 22 + 1 are 43: nothing is counted twice, and nothing is said of it"
     counts = close_out_totals(RESULTS, ORDERED)
     assert sum(row.cells[1].number or 0 for row in counts.rows) == 8
+
+
+def test_the_state_stands_beside_the_requirement() -> None:
+    table = status_table(SNAPSHOT, RESULTS, ORDERED, DEPTHS)
+    assert [column.title for column in table.columns] == [
+        "Requirement", "State", "Proved", "Guarded margin", "Governed at", "Title", "Block", "Limit",
+    ]  # fmt: skip
+    row = cells(table, "PA-1")
+    assert (row["state"].text, row["proved"].text, row["block"].text) == ("failing", "8 of 9", "PA")
+    assert (row["title"].text, row["governed_at"].text) == (
+        next(one.title for one in ORDERED if one.id == "PA-1"),
+        "30 GHz, +85 °C ambient, item PA-A",
+    )
 
 
 def test_a_project_without_anything_has_reports_too() -> None:

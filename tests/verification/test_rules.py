@@ -386,6 +386,30 @@ def test_a_requirement_that_is_its_own_descendant_is_left_out_of_its_children() 
 def test_k_and_n_count_all_required_points_of_all_activities() -> None:
     status = status_of(T_1=some_evidence([21, 18, float("nan")]))
     assert (status.k, status.n, status.n_failing, status.n_missing) == (1, 3, 1, 1)
+    assert (status.n_without_evidence, status.n_undecided) == (1, 0)
+
+
+def test_points_with_evidence_that_decides_nothing_are_told_from_points_without_any() -> None:
+    simulated = some_evidence([21, 21, float("nan")])
+    status = status_of(an_evidence_table(method=Method.ANALYSIS), T_1=simulated)
+    assert (status.k, status.n_failing, status.n_missing) == (0, 0, 3)
+    assert (status.n_without_evidence, status.n_undecided) == (1, 2)
+
+
+def test_a_point_that_one_item_fails_and_another_has_no_reading_of_counts_once() -> None:
+    status = status_of(
+        an_item("LNA-2"),
+        an_evidence_table("T-2"),
+        T_1=some_evidence([21, 21, float("nan")]),
+        T_2=some_evidence([18, float("nan"), 18], items="LNA-2"),
+    )
+    assert (status.k, status.n_failing, status.n_without_evidence, status.n_undecided) == (2, 2, 0, 0)
+
+
+def test_items_that_each_must_prove_have_their_own_points_without_evidence() -> None:
+    each = a_requirement(provers=Provers(rule="each of", items=("LNA-1", "LNA-2")))
+    status = status_of(an_item("LNA-2"), each, T_1=some_evidence([21, 18, float("nan")]))
+    assert (status.k, status.n, status.n_failing, status.n_without_evidence) == (1, 6, 1, 4)
 
 
 # Rule 11: the board
