@@ -3,7 +3,10 @@
 Where things live:
 
 - ``reader`` positions and tokens; ``expression_grammar`` the grammar that limits, gates, applicability and filters
-  share; ``bound_grammar``, ``shape_grammar``, ``population_grammar`` the parts of a limit; ``grammar`` the whole
+  share; ``value_grammar``, ``bound_grammar``, ``tolerance_grammar``, ``at_grammar``, ``shape_grammar``,
+  ``population_grammar`` the parts of a limit, ``joint_grammar`` what joins them, ``whole_grammar`` what belongs to
+  all of it, ``grammar`` the whole
+- ``phrases`` words that say a side, ``suggestion`` a spelling that works, for every refusal
 - ``settling`` which unit a limit has, and what does not add; ``conversion`` units that meet in it
 - ``expression`` parse and evaluate expressions; ``expression_value`` how, on arrays; ``inputs`` where names look
 - ``evaluation`` the bounds a limit sets; ``bounds`` what comes out; ``mask`` and ``combination`` two large parts

@@ -26,6 +26,14 @@ class Bare:
     place: int
 
 
+@dataclass(frozen=True, slots=True)
+class Typical:
+    """A value that is said to be typical: it limits nothing and is left out."""
+
+    written: str
+    place: int
+
+
 @dataclass(slots=True)
 class Draft:
     """A limit while it is being read."""

@@ -231,10 +231,14 @@ def _starts_tolerance(reader: Reader) -> bool:
     return _TOLERANCE.match(reader.text, reader.place) is not None
 
 
+#: "min 1 dB / typ 2 dB / max 3 dB" lists three values; nothing is divided.
+_SIDE_AFTER_SLASH = re.compile(r"/ *(?:min|max|typ|nom)(?:imum|ical|inal)?\b(?! *\()", re.IGNORECASE)
+
+
 def _read_product(reader: Reader) -> Expression:
     left = _read_factor(reader)
     while True:
-        if reader.sees("**"):
+        if reader.sees("**") or _SIDE_AFTER_SLASH.match(reader.text, reader.place):
             return left
         sign = reader.take("*", "·", "/")
         if sign is None:
@@ -251,7 +255,14 @@ def _read_factor(reader: Reader) -> Expression:
             return _checked(reader, Negative(operand=_value_only(reader, _read_factor(reader))))
         if reader.sees("+") and not reader.sees("+/-", "+-") and reader.take("+") is not None:
             return _read_factor(reader)
+        start = reader.place
         base = _read_atom(reader)
+        if reader.sees("^", "**") and isinstance(base, Number) and base.unit:
+            reader.fail(
+                f"a power of a value in {base.unit} is not computed",
+                hint="write a unit with a slash, as in '>= 5 dB/K', and a power of ten as '1e-6'",
+                place=start,
+            )
         if reader.take("^", "**") is None:
             return base
         return _operation(reader, "^", base, _read_factor(reader))
@@ -273,7 +284,7 @@ def _read_atom(reader: Reader) -> Expression:
     name = reader.take_name()
     if name is None:
         reader.fail("the text ends where a number or a name belongs" if reader.done() else
-                    f"{reader.rest!r} is neither a number nor a name", place=start)  # fmt: skip
+                    f"a number or a name belongs here, not {reader.rest!r}", place=start)  # fmt: skip
     if reader.text.startswith("(", start + len(name)):
         reader.fail(f"{name!r} is not a function", hint=f"functions are {', '.join(FUNCTIONS)}", place=start)
     if name.lower() in RESERVED:

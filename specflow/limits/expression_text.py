@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
+from specflow.limits.expression_shape import walk
 from specflow.model.expression import (
     Call,
     Choice,
@@ -146,7 +149,8 @@ def _words(node: Expression) -> str:
         case Compare(sign=sign, left=left, right=right):
             return f"{_words(left)} {_COMPARE_WORDS[sign]} {_words(right)}{_declared_unit(left, right)}"
         case Member(operand=operand, values=values):
-            return f"{_words(operand)} is {_listed([_words(value) for value in values], 'or')}"
+            listed = _listed([_words(value) for value in values], "or")
+            return f"{_words(operand)} is {listed}{_unit_of_members(operand, values)}"
         case Logic(sign=sign, terms=terms):
             return f" {sign} ".join(_grouped(term, 2 if sign == "or" else 3) for term in terms)
         case Not(operand=operand):
@@ -154,6 +158,16 @@ def _words(node: Expression) -> str:
         case Choice(when=when, then=then, otherwise=otherwise):
             return f"{_words(then)} where {_words(when)}, else {_words(otherwise)}"
     return expression_text(node)
+
+
+def _unit_of_members(operand: Expression, values: Sequence[Expression]) -> str:
+    """The unit that the name declares, where the values are numbers without one of their own."""
+    if not isinstance(operand, Name) or not operand.unit:
+        return ""
+    plain = not any(
+        isinstance(part, Word) or getattr(part, "unit", "") for value in values for part in walk(value)
+    )
+    return f" {operand.unit}" if plain else ""
 
 
 def _declared_unit(left: Expression, right: Expression) -> str:

@@ -12,17 +12,20 @@ population = [ "of" value ] [ "over" name { "," name } ] [ "where" condition ] [
 from __future__ import annotations
 
 import re
-from typing import Literal
+from collections.abc import Sequence
+from typing import NoReturn
 
+from specflow.errors import ExpressionError
+from specflow.limits.at_grammar import joined_cases, read_at
 from specflow.limits.bound_grammar import directed, read_bound
-from specflow.limits.draft import Bare, Draft
+from specflow.limits.draft import Bare, Draft, Typical
 from specflow.limits.expression_grammar import read_condition
 from specflow.limits.expression_shape import is_condition
+from specflow.limits.joint_grammar import read_rule, take_joint, take_typical_remark, without_typical
 from specflow.limits.population_grammar import read_population, read_statistic
-from specflow.limits.reader import RESERVED, Reader
+from specflow.limits.reader import RESERVED, Reader, canonical_unit
 from specflow.limits.shape_grammar import (
     read_allowance,
-    read_amount,
     read_bandwidth,
     read_by,
     read_cases,
@@ -30,8 +33,10 @@ from specflow.limits.shape_grammar import (
     read_members,
     read_power_sum,
 )
+from specflow.limits.suggestion import better_told
+from specflow.limits.text import node_text
 from specflow.limits.tree import side_of, tree_units, undefined_in
-from specflow.model.expression import Number
+from specflow.limits.whole_grammar import read_tentative, take_tbr, take_whole
 from specflow.model.limit import (
     Allowed,
     Alternatives,
@@ -44,22 +49,16 @@ from specflow.model.limit import (
     NoLimit,
     OfQuantity,
     Population,
-    Rounding,
     Rule,
-    Side,
-    TestTolerance,
     Undefined,
 )
 from specflow.model.parameter import Better, Parameter
 
 _NO_LIMIT = ("no upper limit", "no lower limit", "no limit", "not required", "unlimited")
 _NOT_APPLICABLE = ("not applicable", "n/a", "n.a.", "N-A")
-_LOOSER = ("looser", "less stringent", "less strict", "more relaxed")
-_STRICTER = ("stricter", "more stringent", "tighter")
-_LOWER = ("lower", "smaller", "less")
-_HIGHER = ("higher", "greater", "larger")
 _QUANTITY = re.compile(r"([^\W\d][\w.]*) *: *\{")
-_TENTATIVE = re.compile(r"\[( *[-+±<>=≤≥]* *\d[\d., ]*)\]")
+_RANGE_BEHIND = re.compile(r"(\d+(?:\.\d+)?)(?: *[kMG]?Hz)? *(?:-|–|to|\.\.+|…) *(\d+(?:\.\d+)?) *([kMG]?Hz)")
+_TABLE = re.compile(r" *(\d+(?:\.\d+)?)(?: *[kMG]?Hz)? *(?:-|–|to|\.\.+|…) *(\d+(?:\.\d+)?) *([kMG]?Hz) *:")
 
 
 def parse_limit(
@@ -70,39 +69,46 @@ def parse_limit(
     ``unit_hint`` or the parameter's unit serves numbers without a unit; ``better`` or the parameter's direction
     serves a value without one. Raises ExpressionError with the column (counted from 1) and what would help.
     """
+    hint = unit_hint or (parameter.unit if parameter is not None else "")
+    direction = better or (parameter.better if parameter is not None else None)
+    own = frozenset(name.casefold() for name in _names_of(parameter))
+
+    def reads(spelling: str) -> Limit:
+        return _read(spelling, hint, direction, own)
+
+    try:
+        return reads(text)
+    except ExpressionError as error:
+        raise better_told(error, text, hint, direction, reads) from None
+
+
+def _names_of(parameter: Parameter | None) -> tuple[str, ...]:
+    return () if parameter is None else (parameter.key, parameter.title, *parameter.aliases)
+
+
+def _read(text: str, hint: str, better: Better | None, own_names: frozenset[str]) -> Limit:
     reader = Reader(text)
-    draft = Draft(reader, hint=unit_hint, better=better)
-    if parameter is not None:
-        draft.hint = unit_hint or parameter.unit
-        draft.better = better or parameter.better
-        draft.own_names = frozenset(name.casefold() for name in (parameter.key, *parameter.aliases))
+    draft = Draft(reader, hint=hint, better=better, own_names=own_names)
     if reader.done():
-        reader.fail("the limit is empty", hint="write it, or TBD, or 'no limit'")
-    _read_tentative(draft)
+        reader.fail("the limit is empty", hint="write it, or 'TBD', or 'no limit'")
+    read_tentative(draft)
     tree = read_limit(draft)
     if not reader.done():
-        reader.fail(f"nothing can be made of {reader.rest!r}", hint=_left_over(reader))
+        _refuse_rest(draft, tree)
     return _finished(text, draft, tree)
 
 
-def _left_over(reader: Reader) -> str:
-    """Say what to do with what engineers often write behind a limit."""
-    if reader.sees_words("typ", "typical", "nominal", "nom"):
-        return "a typical value is no limit; put it in the note"
-    if reader.sees("@", "(") or reader.sees_words("at", "over", "for", "from"):
-        return "conditions belong in the conditions set, a measurement bandwidth after 'in'"
-    return ""
-
-
-def _read_tentative(draft: Draft) -> None:
-    """Square brackets around a number mark it as tentative (3GPP drafting): they count as TBR."""
-    if not _TENTATIVE.search(draft.reader.text):
-        return
-    draft.reader.text = _TENTATIVE.sub(r" \1 ", draft.reader.text)
-    draft.reader.take()
-    draft.reader.place = len(draft.reader.text) - len(draft.reader.text.lstrip())
-    draft.state = LimitState.TBR
-    draft.say("the number in square brackets is tentative: TBR")
+def _refuse_rest(draft: Draft, tree: LimitNode | None) -> NoReturn:
+    """Fail with what is left over, and what to do with what engineers often write behind a limit."""
+    reader = draft.reader
+    hint = ""
+    if reader.sees("@", "(", ",") or reader.sees_words("at", "over", "for", "from", "within", "across"):
+        hint = "conditions belong in the conditions set, a measurement bandwidth after 'in'"
+        ranged = _RANGE_BEHIND.search(reader.rest_of_text)
+        if ranged is not None and tree is not None and (unit := canonical_unit(ranged[3])):
+            table = f"by frequency[{unit}] ({ranged[1]}..{ranged[2]}: {node_text(tree)})"
+            hint += f"; or, if it is the frequency: '{table}'"
+    reader.fail(f"nothing can be made of {reader.rest!r}", hint=hint)
 
 
 def _finished(text: str, draft: Draft, tree: LimitNode) -> Limit:
@@ -122,74 +128,73 @@ def read_limit(draft: Draft) -> LimitNode:
     """Read a limit up to a closing bracket, a semicolon or the end."""
     reader = draft.reader
     with reader.deeper():
+        _refuse_table(draft)
         clauses = [read_clause(draft)]
-        joint = _take_joint(draft)
+        joint = take_joint(draft, clauses[0])
         while joint is not None:
             clauses.append(read_clause(draft))
-            following = _take_joint(draft)
+            following = take_joint(draft, clauses[-1])
             if following not in (None, joint):
-                reader.fail("'or' and 'and' are mixed", hint="group with braces: {A or B} and C")
+                reader.fail(
+                    "'or' and 'and' are mixed", hint="group with braces: '{>= 3 dB or >= 4 dB} and <= 9 dB'"
+                )
             if following is None:
                 break
-        return _joined(draft, clauses, joint)
+        return _joined(draft, without_typical(draft, clauses), joint)
 
 
-_NEXT_BOUND = re.compile(r"[,;] *(?:[<>≤≥⩽⩾]|(?:max|min)(?:imum)?\b(?! *\())", re.IGNORECASE)
+def _refuse_table(draft: Draft) -> None:
+    """Ask for the name of the condition in ``27.5-28 GHz: 45 dBm; ...``."""
+    table = None if draft.inner else _TABLE.match(draft.reader.text)
+    if table is not None:
+        draft.reader.fail(
+            f"{table[0].strip(' :')} does not say which frequency it is",
+            hint=f"name the condition: 'by frequency[{table[3]}] ({table[1]}..{table[2]}: >= 45 dBm; ...)', as in "
+            "'by frequency[GHz] (27.5..28: >= 45 dBm; 28..30: >= 46 dBm)'",
+            place=0,
+        )
 
 
-def _take_joint(draft: Draft) -> str | None:
-    """Take 'or' or 'and'; a comma (outside brackets a semicolon too) before another bound means 'and'."""
-    reader = draft.reader
-    if _NEXT_BOUND.match(reader.text, reader.place) and not (draft.inner and reader.sees(";")):
-        reader.take(",", ";")
-        return "and"
-    return reader.take_words("or", "and")
-
-
-def _joined(draft: Draft, clauses: list[LimitNode | Bare], joint: str | None) -> LimitNode:
-    if joint is None:
+def _joined(draft: Draft, clauses: Sequence[LimitNode | Bare], joint: str | None) -> LimitNode:
+    if joint is None or len(clauses) == 1:
         only = clauses[0]
-        return directed(draft, only) if isinstance(only, Bare) else only
+        return _sole(draft, only) if isinstance(only, Bare) else only
     sides = {side_of(clause) for clause in clauses if not isinstance(clause, Bare)}
     side = next(iter(sides)) if len(sides) == 1 else None
     members = tuple(directed(draft, part, side) if isinstance(part, Bare) else part for part in clauses)
-    return Alternatives(rule=_rule(draft, joint, members), members=members)
+    table = joined_cases(members) if joint == "and" else None
+    return table or Alternatives(rule=read_rule(draft, joint, members), members=members)
 
 
-def _rule(draft: Draft, joint: str, members: tuple[LimitNode, ...]) -> Rule:
+def _sole(draft: Draft, bare: Bare) -> LimitNode:
+    """Give the only value its direction; where it has none, what is left over comes first."""
     reader = draft.reader
-    place = reader.place
-    comma = reader.take(",")
-    if reader.take_words("whichever is the", "whichever is", "whichever") is None:
-        if comma is not None:
-            reader.fail("expected 'whichever is looser' or 'whichever is stricter' after the comma")
-        return Rule.LOOSER if joint == "or" else Rule.STRICTER
-    if reader.take_words(*_LOOSER) is not None:
-        return Rule.LOOSER
-    if reader.take_words(*_STRICTER) is not None:
-        return Rule.STRICTER
-    word = reader.take_words(*_LOWER, *_HIGHER)
-    sides = {side_of(member) for member in members}
-    if word is None or len(sides) != 1 or None in sides:
-        reader.fail(
-            "which of the alternatives governs?", hint="whichever is looser, or stricter", place=place
-        )
-    looser = (word in _HIGHER) == (sides == {Side.UPPER})
-    return Rule.LOOSER if looser else Rule.STRICTER
+    try:
+        return directed(draft, bare)
+    except ExpressionError:
+        if draft.better in (None, Better.NEITHER) and not reader.done() and not reader.sees(")", "}", ";"):
+            _refuse_rest(draft, None)
+        raise
 
 
-def read_clause(draft: Draft) -> LimitNode | Bare:
+def read_clause(draft: Draft) -> LimitNode | Bare | Typical:
     """Read one bound or shape and everything that follows it."""
     reader = draft.reader
     if reader.sees_words("TBR", "TBC"):
-        _take_tbr(draft)
+        word = reader.rest
+        take_tbr(draft)
         reader.take(":")
         if reader.done():
-            reader.fail("TBR needs its number", hint="TBR 3.2 dB; a limit without a number is TBD")
+            reader.fail(
+                f"{word} needs its number", hint="write 'TBR <= 3.2 dB'; a limit without a number is 'TBD'"
+            )
     node = _read_primary(draft)
+    if isinstance(node, Typical):
+        return node
     while True:
         place = reader.place
-        if _take_whole(draft):
+        take_typical_remark(draft)
+        if take_whole(draft):
             continue
         if isinstance(node, Bare) and _sees_postfix(reader):
             node = directed(draft, node)
@@ -201,7 +206,7 @@ def read_clause(draft: Draft) -> LimitNode | Bare:
             return node
 
 
-def _read_primary(draft: Draft) -> LimitNode | Bare:
+def _read_primary(draft: Draft) -> LimitNode | Bare | Typical:
     reader = draft.reader
     if reader.take("{") is not None:
         with draft.inside():
@@ -212,6 +217,8 @@ def _read_primary(draft: Draft) -> LimitNode | Bare:
         return NoLimit()
     if reader.take_words(*_NOT_APPLICABLE) is not None:
         return NoLimit(label="not applicable")
+    if reader.take_words("t.b.d.") is not None:
+        return Undefined()
     if reader.take_words("FFS") is not None:
         return Undefined(label="FFS")
     if reader.take_words("by") is not None:
@@ -253,50 +260,25 @@ def _read_shape(draft: Draft, word: str) -> LimitNode:
         return read_members(draft, read_limit, Rule.LOOSER if word == "looser" else Rule.STRICTER)
 
 
-def _take_tbr(draft: Draft) -> bool:
-    reader = draft.reader
-    place = reader.place
-    if reader.take("(TBR)", "(tbr)", "(TBC)") is None and reader.take_words("TBR", "TBC") is None:
-        return False
-    if draft.inner:
-        reader.fail("TBR belongs to the whole limit, not inside", place=place)
-    draft.state = LimitState.TBR
-    return True
-
-
-def _take_whole(draft: Draft) -> bool:
-    """Take what belongs to the limit as a whole: TBR, rounding, test tolerance."""
-    reader = draft.reader
-    place = reader.place
-    if _take_tbr(draft):
-        return True
-    if reader.take_words("rounded") is not None:
-        draft.whole_only("the rounding", place)
-        word = reader.take_words("up", "down")
-        method: Literal["nearest", "up", "down"] = (
-            "up" if word == "up" else "down" if word == "down" else "nearest"
-        )
-        if reader.take_words("to") is None:
-            reader.fail("expected 'to' and the step of rounding", hint="rounded to 0.1")
-        step = reader.take_number()
-        if step is None or float(step) <= 0:
-            reader.fail("the step of rounding is a positive number", hint="rounded to 0.1")
-        draft.rounding = Rounding(step=Number(text=step, unit=reader.take_unit() or ""), method=method)
-        return True
-    if reader.take_words("test tolerance") is not None:
-        draft.whole_only("the test tolerance", place)
-        amount = read_amount(draft, "the test tolerance")
-        stimulus = reader.take_words("on the stimulus", "on stimulus") is not None
-        draft.test_tolerance = TestTolerance(amount=amount, place="stimulus" if stimulus else "limit")
-        return True
-    return False
-
-
 _POSTFIXES = ("if", "only if", "when", "in", "measured in", "allow", "at", "worst", "mean", "with")
 
 
+_BANDWIDTH_WORDS = (
+    "resolution bandwidth",
+    "measurement bandwidth",
+    "reference bandwidth",
+    "bandwidth",
+    "RBW",
+)
+#: "-36 dBm (RBW 100 kHz)", "-36 dBm, RBW = 100 kHz"
+_BEFORE_BANDWIDTH = re.compile(
+    rf"[,(]? *(?:{'|'.join(_BANDWIDTH_WORDS)})(?!\w) *[:=]? *(?=\d)", re.IGNORECASE
+)
+
+
 def _sees_postfix(reader: Reader) -> bool:
-    return reader.sees_words(*_POSTFIXES)
+    behind = reader.sees("@") or _BEFORE_BANDWIDTH.match(reader.text, reader.place) is not None
+    return behind or reader.sees_words(*_POSTFIXES)
 
 
 def _read_postfix(draft: Draft, node: LimitNode) -> LimitNode | None:
@@ -310,11 +292,22 @@ def _read_postfix(draft: Draft, node: LimitNode) -> LimitNode | None:
             )
         return Gate(when=when, limit=node)
     if reader.take_words("measured in", "in") is not None:
-        return MeasuredIn(limit=node, bandwidth=read_bandwidth(draft))
+        bandwidth = read_bandwidth(draft)
+        reader.take_words(*_BANDWIDTH_WORDS)
+        return MeasuredIn(limit=node, bandwidth=bandwidth)
+    before = reader.take_pattern(_BEFORE_BANDWIDTH)
+    if before is not None:
+        bandwidth = read_bandwidth(draft)
+        if before.startswith("("):
+            reader.expect(")", "the measurement bandwidth")
+        return MeasuredIn(limit=node, bandwidth=bandwidth)
     if reader.take_words("allow") is not None:
         return Allowed(limit=node, allowance=read_allowance(draft))
     if reader.take_words("with") is not None:
         return Population(limit=node, statistic=_exceptions(draft))
+    at = read_at(draft, node)
+    if at is not None:
+        return at
     statistic = read_statistic(draft)
     return None if statistic is None else read_population(draft, node, statistic)
 
@@ -330,6 +323,10 @@ def _exceptions(draft: Draft) -> Exceptions:
         return Exceptions(count=int(number))
     with draft.inside():
         relaxed = _read_primary(draft)
+    if isinstance(relaxed, Typical):
+        reader.fail(
+            "a typical value is no limit", hint="with 3 exceptions within ± 11 dB", place=relaxed.place
+        )
     return Exceptions(
         count=int(number), relaxed=directed(draft, relaxed) if isinstance(relaxed, Bare) else relaxed
     )

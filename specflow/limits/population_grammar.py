@@ -37,7 +37,7 @@ def _percentile_or_bound(draft: Draft) -> Statistic:
         return ToleranceBound(coverage=Number(text=first), confidence=Number(text=second))
     if not reader.sees("%"):
         reader.fail(
-            "'at' is followed by a percentile",
+            "'at' is followed by a percentile, or by a value with its unit",
             hint=f"{_HINT}; conditions such as a frequency belong in the conditions set",
             place=place,
         )

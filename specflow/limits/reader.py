@@ -49,11 +49,25 @@ _GRAMMAR_WORDS = (
 )
 RESERVED = frozenset(_GRAMMAR_WORDS.split())
 
+#: Words that may stand behind a number without being its unit.
+_REMARKS = frozenset({"typ", "typical", "typically", "nom", "nominal"})
+#: What is often written without a blank behind a unit: 20dBmin, 28VDC.
+_SUFFIXES = ("minimum", "maximum", "min", "max", "typ")
+_DIRECT_CURRENT = re.compile(r"(?:DC|dc|d\.c\.)(?!\w)")
+_SUPERSCRIPTS = str.maketrans("⁰¹²³⁴⁵⁶⁷⁸⁹⁺⁻−", "0123456789+--")
+#: Read from the text as typed: a factor written with * is arithmetic.
+_TEN = r"(?:(?P<factor>\d+(?:\.\d+)?) *[x×·] *)"
+_POWERS_OF_TEN = (
+    re.compile(_TEN + r"10 *\^ *(?P<power>[-+−]?\d+)(?![\d.(])"),
+    re.compile(_TEN + r"?10(?P<power>[⁺⁻]?[⁰¹²³⁴⁵⁶⁷⁸⁹]+)"),
+)
+
 FUNCTION_NAMES = (*FUNCTIONS, "log")
 
 _BLANKS = re.compile(r" *")
 _NUMBER = re.compile(r"(?:\d+(?:\.(?!\.)\d*)?|\.\d+)(?:[eE][+-]?\d+)?")
 _THOUSANDS = re.compile(r"\d{1,3}(?:,\d{3})+\.\d+")
+_THOUSANDS_OF_POINTS = re.compile(r"\d{1,3}(?:\.\d{3})+,\d+(?!\d)")
 _COMMA = re.compile(r"\d+,\d+")
 _NAME = re.compile(r"[^\W\d]\w*(?:\.[^\W\d]\w*)*")
 _LETTERS = r"[A-Za-zµμΩΩ°%‰]+"
@@ -103,6 +117,15 @@ class Reader:
         """The first characters of what is left, for messages."""
         rest = self.original[self.place :].strip()
         return rest if len(rest) <= 20 else rest[:20] + "..."
+
+    @property
+    def rest_of_text(self) -> str:
+        """All that is left, plain characters."""
+        return self.text[self.place :]
+
+    def written_since(self, place: int) -> str:
+        """Return what was read since a place, as typed."""
+        return self.original[place : self.place].strip()
 
     def fail(self, message: str, *, hint: str = "", place: int | None = None) -> NoReturn:
         """Raise ExpressionError naming the column (counted from 1)."""
@@ -190,9 +213,15 @@ class Reader:
         A comma between digits is a decimal comma where it can be nothing else; otherwise the reading is refused.
         """
         start = self.place
+        for pattern in _POWERS_OF_TEN:
+            if (power := pattern.match(self.original, start)) is not None:
+                return self._power_of_ten(power)
         thousands = self.take_pattern(_THOUSANDS)
         if thousands is not None:
             return thousands.replace(",", "")
+        pointed = None if self.calls else self.take_pattern(_THOUSANDS_OF_POINTS)
+        if pointed is not None:
+            return pointed.replace(".", "").replace(",", ".")
         comma = _COMMA.match(self.text, start)
         if comma is not None:
             return self._decimal_comma(comma)
@@ -204,6 +233,12 @@ class Reader:
         if number.startswith("."):
             number = "0" + number
         return number.rstrip(".") if number.endswith(".") else number
+
+    def _power_of_ten(self, match: re.Match[str]) -> str:
+        """Take 2 x 10^-6 or 10⁻⁶ as the number 2e-6 or 1e-6."""
+        self.place = match.end()
+        self._skip()
+        return f"{match['factor'] or '1'}e{match['power'].translate(_SUPERSCRIPTS)}"
 
     def _decimal_comma(self, match: re.Match[str]) -> str:
         whole, fraction = match.group().split(",")
@@ -237,9 +272,27 @@ class Reader:
         for end in self._unit_ends(head.end()):
             unit = canonical_unit(self.text[self.place : end].strip())
             if unit is not None:
-                self.place = end
-                self._skip()
+                return self._after_unit(unit, end)
+        return self._take_grown_together(head.group())
+
+    def _after_unit(self, unit: str, end: int) -> str:
+        """Move on behind a unit; the DC of volts and amperes is no part of it (28 V DC)."""
+        self.place = end
+        self._skip()
+        if unit.endswith(("V", "A")):
+            self.take_pattern(_DIRECT_CURRENT)
+        return unit
+
+    def _take_grown_together(self, word: str) -> str | None:
+        """Take the unit off a word such as dBmin or VDC, and leave min, max or typ to be read next."""
+        for ending in _SUFFIXES:
+            stem = word.removesuffix(ending)
+            if stem not in ("", word) and (unit := canonical_unit(stem)) is not None:
+                self.place += len(stem)
                 return unit
+        stem = word.removesuffix("DC").removesuffix("dc")
+        if stem.endswith(("V", "A")) and stem != word and (unit := canonical_unit(stem)) is not None:
+            return self._after_unit(unit, self.place + len(word))
         return None
 
     def _unit_ends(self, end: int) -> list[int]:
@@ -252,7 +305,7 @@ class Reader:
     def refuse_unknown_unit(self) -> None:
         """Fail when a word that is no unit and no part of the grammar follows a number."""
         name = _NAME.match(self.text, self.place)
-        if name is None or name.group().lower() in RESERVED or self.sees_call():
+        if name is None or name.group().lower() in RESERVED | _REMARKS or self.sees_call():
             return
         word = name.group()
         try:

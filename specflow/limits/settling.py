@@ -22,7 +22,7 @@ from specflow.model.expression import Call, Choice, Expression, Name, Negative, 
 from specflow.units import Kind
 
 _NO_UNIT = "the limit has no unit"
-_NO_UNIT_HINT = "write it after the number, as in '45 dBm'; 'plain' for a number without unit"
+_NO_UNIT_HINT = "write it after the number, or plain for a number without a unit"
 
 
 def spine(node: Expression) -> Iterator[Expression]:
@@ -84,7 +84,7 @@ def refuse_level_sums(value: Expression, unit: str, unit_of_leaf: Callable[[Expr
             "two levels do not add",
             hint="write a difference in dB; a power sum is asked for as powersum(a, b)",
         )
-    if levels < 1 and not open_ends:
+    if (levels == 0 or levels < -1) and not open_ends:
         raise ExpressionError(
             f"a level minus a level is a ratio, not {unit}", hint="write a difference in dB"
         )
@@ -187,7 +187,7 @@ def mixed_units(units: Sequence[str]) -> ExpressionError:
         )
         return ExpressionError(
             f"{message} without {whole}",
-            hint=f"write '... {relative[0]} of carrier + ... {others[0]}' and declare the value of 'carrier'",
+            hint=f"write it as in '± (0.1 {relative[0]} of carrier + 12 {others[0]})' and declare the value of carrier",
         )
     return ExpressionError(message, hint="write both parts in one unit")
 
@@ -233,8 +233,7 @@ def settle_tolerance(written: str, unit: str) -> tuple[str, str]:
 
 
 def is_bare_arithmetic(node: Expression) -> bool:
-    """Tell whether a value is a sum of plain numbers, which may be meant as a range or a tolerance (3-5 V)."""
-    if not isinstance(node, Operation) or node.sign not in "+-":
-        return False
-    numbers = [part for part in walk(node) if isinstance(part, Number)]
-    return all(isinstance(part, Number | Negative | Operation) for part in walk(node)) and not numbers[0].unit
+    """Tell whether a value adds or divides numbers alone: 3-5 V may be meant as a range, 20/23 dB as two values."""
+    parts = list(walk(node))
+    plain = all(isinstance(part, Number | Negative | Operation) for part in parts)
+    return plain and any(isinstance(part, Operation) and part.sign in ("+", "-", "/") for part in parts)

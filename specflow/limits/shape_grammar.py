@@ -12,7 +12,6 @@ from __future__ import annotations
 from collections.abc import Callable
 from itertools import pairwise
 
-from specflow.limits.bound_grammar import plain
 from specflow.limits.draft import Draft
 from specflow.limits.expression_grammar import (
     read_after_name,
@@ -22,6 +21,7 @@ from specflow.limits.expression_grammar import (
     same_unit,
 )
 from specflow.limits.expression_shape import is_condition
+from specflow.limits.value_grammar import plain
 from specflow.model.expression import Expression, Interval, Member, Name, Number
 from specflow.model.limit import (
     Allowance,

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from hypothesis import HealthCheck, given, settings
+from hypothesis import HealthCheck, assume, given, settings
 from hypothesis import strategies as st
 
 from specflow.errors import ExpressionError
@@ -31,12 +31,20 @@ def test_expression_reads_back_from_its_canonical_text(node: Expression) -> None
     assert expression_words(node)
 
 
+def _read_unless_levels_add(text: str) -> Limit:
+    """A random sum may add two levels, which physics refuses; such a tree is no limit, so it is not asked for."""
+    try:
+        return parse_limit(text)
+    except ExpressionError as error:
+        assume(not error.message.startswith(("two levels", "a level minus a level")))
+        raise
+
+
 @calm
 @given(trees)
 def test_limit_reads_back_from_its_canonical_text_and_from_json(tree: LimitNode) -> None:
     limit = Limit(text="typed", tree=tree)
-    text = limit_text(limit)
-    assert parse_limit(text).tree == tree
+    assert _read_unless_levels_add(limit_text(limit)).tree == tree
     assert Limit.model_validate_json(limit.model_dump_json()) == limit
     assert limit_words(limit)
 

@@ -97,7 +97,9 @@ def _lacks_unit(
     units = {value.name: value.unit for value in intake.all(DeclaredValue)}
     for name in limit_inputs(limit):
         if find_dimension(name) is None:
-            text = re.sub(rf"\b{re.escape(name)}\b(?!\[)", f"1 {units.get(name, parameter.unit)}", text)
+            unit = units.get(name, parameter.unit)
+            named = f"{name}[{'plain' if unit in ('', '1') else unit}]"
+            text = re.sub(rf"\b{re.escape(name)}\b(?!\[)", named, text)
     silent = parameter.model_copy(update={"unit": ""})
     try:
         parse_limit(text, parameter=silent)
