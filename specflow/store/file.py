@@ -93,10 +93,17 @@ class ProjectFile:
         return new_file(self.path)
 
     def connect(self) -> sqlite3.Connection:
-        """Open the file; it must exist. Transactions are begun by hand (``isolation_level`` None)."""
-        connection = self._connect("mode=ro" if self.read_only else "mode=rw")
+        """Open the file; it must exist. Transactions are begun by hand (``isolation_level`` None).
+
+        A project that is only to be read is opened for writing too, with writes forbidden: SQLite deletes the log and
+        its index when the last connection is closed, but one of mode=ro makes them and may not delete them. A file
+        that may not be written SQLite opens to be read by itself.
+        """
+        connection = self._connect("mode=rw")
         try:
             connection.execute("PRAGMA schema_version")
+            if self.read_only:
+                connection.execute("PRAGMA query_only = ON")
         except sqlite3.OperationalError as error:
             connection.close()
             # A database in WAL mode needs its folder writable even to be read, unless nothing is left in the log.

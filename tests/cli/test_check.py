@@ -121,3 +121,12 @@ def test_an_unknown_rule_is_refused_with_what_is_near(command: Command) -> None:
     outcome = command("rules", "faling")
     assert (outcome.code, outcome.out) == (ExitCode.BAD_INPUT, "")
     assert "did you mean failing" in outcome.err
+
+
+@pytest.mark.parametrize("words", [("status",), ("check",), ("history",), ("trace", "R-1")])
+def test_a_command_that_reads_leaves_only_the_project_file(
+    command: Command, project: Path, words: tuple[str, ...]
+) -> None:
+    before = sorted(path.name for path in project.iterdir())
+    assert command(*words).code in (ExitCode.CLEAN, ExitCode.FINDINGS)
+    assert sorted(path.name for path in project.iterdir()) == before == ["harbour.specflow", "reqs.xlsx"]

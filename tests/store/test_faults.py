@@ -45,6 +45,32 @@ def test_a_closed_project_is_one_file(project: Path) -> None:
     assert [file.name for file in project.parent.iterdir()] == [project.name]
 
 
+@pytest.mark.parametrize("read_only", [True, False])
+def test_reading_leaves_nothing_beside_the_project(project: Path, read_only: bool) -> None:
+    before = project.read_bytes()
+    with open_project(project, read_only=read_only) as store:
+        assert store.load().revision == store.revision == 2
+        assert len(store.history()) == 2
+    assert [file.name for file in project.parent.iterdir()] == [project.name]
+    assert project.read_bytes() == before
+
+
+def test_the_last_of_several_readers_leaves_nothing_beside_the_project(project: Path) -> None:
+    with place_of(project, read_only=True).reading() as run:
+        with open_project(project, read_only=True) as store:
+            assert store.load().revision == 2
+        assert [row[0] for row in run("SELECT revision FROM project_state")] == [2]
+    assert [file.name for file in project.parent.iterdir()] == [project.name]
+
+
+def test_a_connection_to_read_with_does_not_write(project: Path) -> None:
+    with (
+        place_of(project, read_only=True).reading() as run,
+        pytest.raises(sqlite3.OperationalError, match="readonly"),
+    ):
+        run("UPDATE project_state SET revision = 7")
+
+
 def test_a_missing_file(tmp_path: Path) -> None:
     error = refusal(tmp_path / "none.specflow")
     assert "no such project" in error.message
@@ -209,17 +235,20 @@ def test_opened_to_be_read_only(where: str) -> None:
 
 
 @pytest.mark.skipif(not hasattr(os, "geteuid"), reason="file permissions work differently here")
-def test_a_file_and_folder_that_may_not_be_written() -> None:
+@pytest.mark.parametrize("read_only", [True, False])
+@pytest.mark.parametrize("mode", [0o444, 0o666])
+def test_a_file_and_folder_that_may_not_be_written(read_only: bool, mode: int) -> None:
     with tempfile.TemporaryDirectory() as folder:
         path = Path(folder, "terminal.specflow")
         create_project(path, a_project()).close()
-        path.chmod(0o444)
+        path.chmod(mode)
         Path(folder).chmod(0o555)
-        with not_as_root(), open_project(path) as store:
+        with not_as_root(), open_project(path, read_only=read_only) as store:
             assert store.load().project == a_project()
             assert len(store.history()) == 1
-            with pytest.raises(StoreError, match="the project is read-only"):
+            with pytest.raises(StoreError, match="read.only"):
                 store.apply(adding(a_block()), by=ME)
+        assert [file.name for file in Path(folder).iterdir()] == [path.name]
         Path(folder).chmod(0o755)
 
 
