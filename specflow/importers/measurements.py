@@ -181,7 +181,13 @@ def _proposal(found: Sequence[_Found], context: Context, person: Mapping[str, st
     entries = []
     for one in found:
         preamble = read_preamble(one.table.grid, one.table.top, one.table.header_row)
-        stated = collect(preamble.facts, one.mapping.stated, person)
+        stated = collect(
+            preamble.facts,
+            one.mapping.stated,
+            person,
+            sheet_facts=one.sheet_facts,
+            own_dimensions=context.dimensions,
+        )
         meanings = read_meanings(one.table, context, one.mapping, stated)
         entries.append((one.table, one.key, one.mapping, meanings, preamble.title))
     return propose(entries)

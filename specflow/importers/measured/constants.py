@@ -6,10 +6,11 @@ from dataclasses import dataclass
 
 from specflow.importers.measured.header_text import read_header
 from specflow.importers.measured.mapping import LayoutMapping
+from specflow.importers.measured.names import name_of
 from specflow.importers.measured.rejects import cell_text
 from specflow.importers.measured.result import Role
 from specflow.importers.measured.roles import role_of_words, uncertainty_of
-from specflow.importers.measured.stated import Said, Stated, canonical
+from specflow.importers.measured.stated import Said, Stated
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.readers import column_letter, is_blank, looks_numeric
 
@@ -20,6 +21,7 @@ _OF_THE_TABLE = frozenset(
         "stage",
         "set_up",
         "performer",
+        "operator",
         "procedure",
         "procedure_revision",
         "model",
@@ -31,7 +33,7 @@ _OF_THE_TABLE = frozenset(
         "hardware",
     ]
 )
-_MAY_VARY = frozenset(("performer", "hardware"))
+_MAY_VARY = frozenset(("performer", "operator", "hardware"))
 
 
 @dataclass(frozen=True, slots=True)
@@ -48,7 +50,7 @@ def read_constants(table: FoundTable, mapping: LayoutMapping, stated: Stated) ->
     found: dict[int, ConstantColumn] = {}
     for header in table.headers:
         parts = read_header(header.text)
-        name = canonical(parts.name)
+        name = name_of(parts.name)
         if name not in _OF_THE_TABLE or role_of_words(parts) or uncertainty_of(parts):
             continue
         mapped = mapping.column(header.text, column_letter(header.column))

@@ -61,7 +61,7 @@ def make_document(
             conditions=tuple(conditions),
             table_key=_table_key(work, identity),
             set_up=stated.text("set_up"),
-            performer=stated.text("performer"),
+            performer=stated.text("performer") or stated.text("operator"),
             procedure=stated.text("procedure"),
             procedure_revision=stated.text("procedure_revision"),
             performed_on=stated.day("date"),

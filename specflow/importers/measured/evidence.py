@@ -48,7 +48,13 @@ def read_table(
     ``sheet_facts`` are said above an earlier table of the sheet and hold where this one says nothing else.
     """
     preamble = read_preamble(table.grid, table.top, table.header_row)
-    stated = collect([*preamble.facts, *sheet_facts], mapping.stated, person)
+    stated = collect(
+        preamble.facts,
+        mapping.stated,
+        person,
+        sheet_facts=sheet_facts,
+        own_dimensions=context.dimensions,
+    )
     sheet = "" if table.grid.name == table.grid.file else table.grid.name
     work = TableWork(table, context, mapping, stated, Rejects(sheet))
     work.notes += [remark.words for remark in table.stepped_over]
@@ -56,6 +62,8 @@ def read_table(
     work.meanings = read_meanings(table, context, mapping, stated)
     work.questions += stated.questions
     work.questions += [meaning.question for meaning in work.meanings if meaning.question]
+    given = {meaning.dimension for meaning in work.of(Role.CONDITION)}
+    work.questions += [doubt for name, doubt in stated.doubts.items() if name not in given]
     _ask_about_columns(work)
     work.rows, notes = select_rows(table, work.meanings, mapping, work.rejects)
     work.notes += notes
@@ -98,6 +106,11 @@ def _ask_about_remarks(work: TableWork) -> None:
 def _ask_about_columns(work: TableWork) -> None:
     """Ask about numbers without a header, and about a table without any value."""
     table = work.table
+    for header in table.headers:
+        if header.column in table.grid.hidden_columns:
+            work.notes.append(
+                f"column {column_letter(header.column)} is hidden in the file; it was read all the same"
+            )
     for column in table.unnamed:
         cells = table.cells(column)
         letter = column_letter(column)
@@ -162,15 +175,16 @@ def _items(work: TableWork) -> TextColumn:
         words = read_words(work.table, columns[0].column, work.rows, work.rejects)
         words = merged_items(work.table, columns[0].column, work.rows, words, work.notes)
         return fill_down(words) if columns[0].fill_down else words
-    item = work.stated.text("item")
+    item = item_name(work.stated.items, work.context)
     if item:
-        return TextColumn(np.zeros(len(work.rows), np.int32), (item_name(item, work.context),))
+        return TextColumn(np.zeros(len(work.rows), np.int32), (item,))
     return TextColumn(np.full(len(work.rows), -1, np.int32), ())
 
 
 def _ask_for_item(work: TableWork, method: Method, items: TextColumn) -> None:
     unnamed = int(np.count_nonzero(items.codes < 0))
-    if method not in _ON_AN_ITEM or not unnamed:
+    pivot = work.mapping.pivot
+    if method not in _ON_AN_ITEM or not unnamed or (pivot is not None and "{item}" in pivot.header):
         return
     if unnamed == len(work.rows):
         remedy = '--state item=SERIAL, an item column, or a line "DUT: SERIAL" above the table'

@@ -22,7 +22,7 @@ from specflow.importers.measured.condition_column import (
 )
 from specflow.importers.measured.constants import ConstantColumn, read_constants
 from specflow.importers.measured.context import Context
-from specflow.importers.measured.header_text import header_key, read_header
+from specflow.importers.measured.header_text import header_key, known_unit, read_header
 from specflow.importers.measured.mapping import ColumnMapping, LayoutMapping
 from specflow.importers.measured.pairing import of_their_values, uncertainty_column, without_doubles
 from specflow.importers.measured.quantity_text import name_quantity
@@ -31,7 +31,7 @@ from specflow.importers.measured.roles import UncertaintyWords, role_of_words, u
 from specflow.importers.measured.stated import Stated
 from specflow.importers.measured.tables import FoundTable, HeaderCell
 from specflow.importers.measured.value_column import mapped_value, named_value
-from specflow.importers.readers import column_letter
+from specflow.importers.readers import column_letter, looks_numeric
 
 _READING_AS_TEXT = re.compile(r"^\s*[<>≤≥]\s*[+\-−]?[0-9]")
 _MOST_TEXTS = 50
@@ -122,11 +122,16 @@ class _Reader:
         if words is not None:
             return uncertainty_column(heading, words, heading.unit())
         named = role_of_words(parts)
+        if named is not None and named[0] is Role.ITEM and self._holds_units(heading):
+            remedy = "put each quantity into a column of its own, with its unit in the header"
+            return heading.ask("holds units: a table with the quantity in the rows is not read", remedy)
         if named is not None and not self._is_ratio(heading):
             return heading.means(*named)
         unit = heading.unit()
         dimension = find_dimension(parts.name)
         quantity = name_quantity(parts, unit.unit, self._context.dictionary, self._context.planes)
+        if dimension is not None and dimension.name == "time" and not unit.unit and self._is_clock(heading):
+            return heading.means(Role.REMARK, "a time of day; kept as a remark")
         if dimension is not None and (
             not quantity.candidates or is_condition(dimension, quantity, self._context)
         ):
@@ -142,6 +147,13 @@ class _Reader:
             return temperature(heading, unit, self._stated)
         return self._unknown(heading)
 
+    def _holds_units(self, heading: Heading) -> bool:
+        """A column "Unit" names specimens, or it holds dB, dBm, GHz."""
+        if header_key(heading.parts.name) != "unit":
+            return False
+        words = {str(value) for value in self._table.cells(heading.header.column).distinct} - {""}
+        return bool(words) and all(known_unit(word) is not None and not looks_numeric(word) for word in words)
+
     def _is_ratio(self, heading: Heading) -> bool:
         """S/N is a serial number, or a ratio of signal to noise: fractions are no serial numbers."""
         if header_key(heading.parts.name) != "s/n":
@@ -149,6 +161,10 @@ class _Reader:
         cells = self._table.cells(heading.header.column)
         numbers = cells.numbers[cells.numeric]
         return bool((numbers != numbers.round()).any())
+
+    def _is_clock(self, heading: Heading) -> bool:
+        cells = self._table.cells(heading.header.column)
+        return not cells.numeric.any()
 
     def _unknown(self, heading: Heading) -> ColumnMeaning:
         """Numbers that nobody can name are asked about; words are kept as a remark."""

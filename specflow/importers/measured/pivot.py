@@ -77,14 +77,15 @@ def stack(work: TableWork, pivot: PivotMapping, columns: EvidenceColumns) -> Sta
     points = all(part.high is part.low for part in parts)
     high = low if points else np.concatenate([part.high for part in parts])
     count = len(pivoted)
-    letters = TextColumn.of([column.letter for column in pivoted])
+    named = headers.text.pop("item", None)
+    items = _repeated(columns.items, count) if named is None else _spread(named, len(work.rows))
     extra = {name: _repeated(words, count) for name, words in columns.extra.items()}
-    extra[SOURCE_COLUMN] = TextColumn(np.repeat(letters.codes, len(work.rows)), letters.labels)
+    extra[SOURCE_COLUMN] = _spread([column.letter for column in pivoted], len(work.rows))
     stacked = EvidenceColumns(
         _stacked_conditions(columns.conditions, headers, count),
         {value.name: ValueArrays(low, high)},
         np.tile(work.rows, count),
-        _repeated(columns.items, count),
+        items,
         None if columns.dates is None else _repeated(columns.dates, count),
         extra,
     )
@@ -148,9 +149,14 @@ def _stacked_conditions(rows: Columns, headers: PivotConditions, count: int) -> 
     }
     text = {name: _repeated(words, count) for name, words in rows.text.items()}
     for name, words in headers.text.items():
-        one = TextColumn.of(words)
-        text[name] = TextColumn(np.repeat(one.codes, size), one.labels)
+        text[name] = _spread(words, size)
     return Columns(size * count, numeric, text, {**rows.units, **headers.units})
+
+
+def _spread(words: Sequence[str], size: int) -> TextColumn:
+    """One word a column, for each of its ``size`` rows."""
+    one = TextColumn.of(words)
+    return TextColumn(np.repeat(one.codes, size), one.labels)
 
 
 def _repeated(words: TextColumn, count: int) -> TextColumn:

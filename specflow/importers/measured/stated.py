@@ -1,12 +1,13 @@
 """What is said for all rows of a table: by the person, by its mapping, or by the key–value rows above it.
 
-The person has the last word. Where the mapping and the file disagree nobody is believed: that is a question.
+The person has the last word. Where the mapping and the file disagree, or the file says two things, nobody is believed:
+that is a question.
 """
 
 from __future__ import annotations
 
 import re
-from collections.abc import Iterable, Mapping
+from collections.abc import Collection, Iterable, Mapping
 from dataclasses import dataclass, field
 from datetime import date
 
@@ -18,59 +19,30 @@ from specflow.conditions import (
     unlocated_temperature_hint,
 )
 from specflow.errors import UnitError
+from specflow.importers.measured.day import read_day
 from specflow.importers.measured.facts import Fact
-from specflow.importers.measured.header_text import read_header
+from specflow.importers.measured.header_text import known_unit, read_header
+from specflow.importers.measured.names import NAMES, OF_THE_SHEET, canonical, name_of
 from specflow.importers.measured.result import ColumnReading, Question, Role
-from specflow.model.evidence import Equipment
+from specflow.model.evidence import Equipment, SpectrumKind
+from specflow.model.requirement import Method, Stage
 from specflow.units import compatible, format_unit, parse_quantity, parse_unit
 
 PERSON = "stated by the person"
 MAPPING = "stated by the mapping"
 
-#: What may be stated for a table, with the keys that files use for it.
-NAMES: Mapping[str, tuple[str, ...]] = {
-    "block": ("assembly", "module", "unit type", "block under test"),
-    "item": ("dut", "uut", "device", "device under test", "unit under test", "serial", "serial number", "serial no",
-             "s/n", "sn", "specimen", "sample", "item under test", "eut"),
-    "requirement": ("requirement id", "req", "req id"),
-    "method": ("verification method",),
-    "stage": ("verification stage",),
-    "set_up": ("set-up", "setup", "test set-up", "test setup", "bench", "test bench", "range"),
-    "performer": ("operator", "tested by", "test engineer", "lab", "laboratory", "test house", "measured by",
-                  "performed by", "engineer"),
-    "date": ("test date", "measured on", "performed on", "date of test", "measurement date"),
-    "procedure": ("test procedure", "procedure number"),
-    "procedure_revision": ("procedure rev", "procedure issue"),
-    "model": ("simulation model", "simulator"),
-    "model_version": ("simulation version", "simulator version"),
-    "validated": ("model validation", "simulation validated", "validated by"),
-    "hardware": ("hardware", "hardware note", "hw", "hardware revision", "build standard"),
-    "bandwidth": ("rbw", "resolution bandwidth", "reference bandwidth", "measurement bandwidth", "res bw", "ref bw"),
-    "spectrum": ("spectrum kind", "signal kind"),
-    "plane": ("reference plane", "referred to", "measurement plane"),
-    "statistic": ("detector", "averaging"),
-    "unit": ("units",),
-    "uncertainty": ("measurement uncertainty", "mu", "u", "expanded uncertainty", "standard uncertainty"),
-    "temperature": (),
-    "corrections": ("correction", "corrections applied"),
-}  # fmt: skip
-
-#: What is said above the first table of a sheet holds for those below it, too; conditions and uncertainties do not.
-_OF_THE_SHEET = frozenset(
-    ("block", "item", "method", "stage", "set_up", "performer", "date", "procedure", "procedure_revision", "model",
-     "model_version", "validated", "hardware")
-)  # fmt: skip
-
-_SPELLINGS = {
-    re.sub(r"[\s_./-]+", "", spelling): name
-    for name, spellings in NAMES.items()
-    for spelling in (name, *spellings)
-}
 _CALIBRATION = re.compile(
-    r"^(?P<asset>.*?)\s*\bcal(?:ibration|\.)?\s*(?:due|expir\w*|valid until|until)\b.*$", re.I
+    r"^(?P<asset>.*?)\s*\bcal(?:ibration|\.)?\s*(?:due|expir\w*|valid until|until)\b.*$", re.IGNORECASE
 )
-_REVISION = re.compile(r"^(?P<name>.*\S)[\s,]+(?:rev(?:ision)?|issue|iss)\.?\s*(?P<revision>\S+)$", re.I)
-_NOT_ONE_VALUE = re.compile(r"±|\+/-|\.\.|\bto\b|…", re.I)
+_REVISION = re.compile(
+    r"^(?P<name>.*\S)[\s,]+(?:rev(?:ision)?|issue|iss)\.?\s*(?P<revision>\S+)$", re.IGNORECASE
+)
+_NOT_ONE_VALUE = re.compile(r"±|\+/-|\.\.|\bto\b|…|\d\s*[-–]\s*\d", re.IGNORECASE)
+_CHOICES: Mapping[str, type[Method] | type[Stage] | type[SpectrumKind]] = {
+    "method": Method,
+    "stage": Stage,
+    "spectrum": SpectrumKind,
+}
 
 
 @dataclass(frozen=True, slots=True)
@@ -91,18 +63,30 @@ class StatedCondition:
     unit: str
     by: str
 
+    def words(self) -> str:
+        """The value with its unit."""
+        value = f"{self.value:.12g}" if isinstance(self.value, float) else self.value
+        return f"{value} {self.unit}".strip()
+
 
 @dataclass
 class Stated:
-    """All that is said for a table. ``said`` is by the names of ``NAMES``, ``conditions`` by dimension."""
+    """All that is said for a table.
+
+    ``said`` is by the names of ``NAMES``, ``conditions`` by dimension; ``items`` are all that were named. ``columns``
+    is what the person says of columns, ``uncertainties`` what is said of single quantities. ``doubts`` are questions
+    about a condition, which are idle where a column gives it row by row.
+    """
 
     said: dict[str, Said] = field(default_factory=dict)
     conditions: dict[str, StatedCondition] = field(default_factory=dict)
+    items: list[Said] = field(default_factory=list)
     equipment: list[Equipment] = field(default_factory=list)
     columns: dict[str, str] = field(default_factory=dict)
-    uncertainty_keys: dict[str, Said] = field(default_factory=dict)
+    uncertainties: list[Said] = field(default_factory=list)
     readings: list[ColumnReading] = field(default_factory=list)
     questions: list[Question] = field(default_factory=list)
+    doubts: dict[str, Question] = field(default_factory=dict)
     unused: list[str] = field(default_factory=list)
 
     def text(self, name: str) -> str:
@@ -120,183 +104,209 @@ class Stated:
         return read_day(self.text(name))
 
 
-def collect(facts: Iterable[Fact], mapping: Mapping[str, str], person: Mapping[str, str]) -> Stated:
-    """Bring the three sources together; what the person says stands."""
-    stated = Stated()
+def collect(
+    facts: Iterable[Fact],
+    mapping: Mapping[str, str],
+    person: Mapping[str, str],
+    *,
+    sheet_facts: Iterable[Fact] = (),
+    own_dimensions: Collection[str] = (),
+) -> Stated:
+    """Bring the sources together. ``sheet_facts`` stand above an earlier table and hold where these say nothing.
+
+    ``own_dimensions`` are those of the project; the person may state them although no dictionary knows them.
+    """
+    collector = _Collector(own_dimensions)
     for key, text in person.items():
-        _take(stated, key, text, PERSON, "")
+        collector.take(key, text, PERSON, "")
     for key, text in mapping.items():
-        _take(stated, key, text, MAPPING, "")
+        collector.take(key, text, MAPPING, "")
     for fact in facts:
-        _take(stated, fact.key, fact.value, f"stated in {fact.cell}", fact.cell)
-    procedure = _REVISION.match(stated.text("procedure"))
-    if procedure and "procedure_revision" not in stated.said:
-        by = stated.by("procedure")
-        stated.said["procedure"] = Said(procedure["name"], by)
-        stated.said["procedure_revision"] = Said(procedure["revision"], by)
-    return stated
+        collector.take(fact.key, fact.value, f"stated in {fact.cell}", fact.cell)
+    said = set(collector.stated.said)
+    for fact in sheet_facts:
+        if canonical(fact.key) not in said:
+            collector.take(fact.key, fact.value, f"stated in {fact.cell}", fact.cell)
+    return collector.result()
 
 
 def holds_below(fact: Fact) -> bool:
     """Whether a fact above the first table of a sheet speaks of the tables below it as well."""
-    return canonical(fact.key) in _OF_THE_SHEET or _CALIBRATION.match(fact.key) is not None
+    return canonical(fact.key) in OF_THE_SHEET or _CALIBRATION.match(fact.key) is not None
 
 
-def canonical(key: str) -> str:
-    """Return the name that a key means: one of ``NAMES``, a dimension, or "" when it is neither."""
-    name = _SPELLINGS.get(re.sub(r"[\s_./-]+", "", key.casefold()), "")
-    if name:
-        return name
-    dimension = find_dimension(read_header(key).name) or find_dimension(key)
-    return dimension.name if dimension else ""
+class _Collector:
+    """Takes one statement after the other."""
 
+    def __init__(self, own_dimensions: Collection[str]) -> None:
+        self.stated = Stated()
+        self._own = own_dimensions
 
-def read_day(text: str) -> date | None:
-    """Read a calendar date that has one meaning: 2026-03-02, 2 March 2026; None for anything else, 02/03/2026 too."""
-    from datetime import datetime
+    def result(self) -> Stated:
+        stated = self.stated
+        procedure = _REVISION.match(stated.text("procedure"))
+        if procedure and "procedure_revision" not in stated.said:
+            by = stated.by("procedure")
+            stated.said["procedure"] = Said(procedure["name"], by)
+            stated.said["procedure_revision"] = Said(procedure["revision"], by)
+        return stated
 
-    plain = (
-        text.strip().replace("T", " ").split(" ")[0] if re.match(r"\d{4}-", text.strip()) else text.strip()
-    )
-    for layout in (
-        "%Y-%m-%d",
-        "%Y/%m/%d",
-        "%Y%m%d",
-        "%d %B %Y",
-        "%d %b %Y",
-        "%d-%b-%Y",
-        "%B %d, %Y",
-        "%b %d, %Y",
-    ):
-        try:
-            return datetime.strptime(plain, layout).date()
-        except ValueError:
-            continue
-    return None
+    def take(self, key: str, text: str, by: str, cell: str) -> None:
+        text = text.strip()
+        if not text or text in ("-", "—"):
+            return
+        calibration = _CALIBRATION.match(key)
+        if by in (PERSON, MAPPING):
+            self._take_word(key, text, by)
+        elif calibration:
+            self._take_calibration(calibration["asset"] or "instrument", key, text, by, cell)
+        elif name := name_of(key):
+            self._take_name(_meant(name, text), key, text, by, cell)
+        elif dimension := canonical(key):
+            self._take_condition(dimension, key, text, by, cell)
+        elif "uncertainty" in key.casefold():
+            self.stated.uncertainties.append(Said(text, by, key))
+            self._show(key, cell, f"{key}: {text}", by)
+        elif is_unlocated_temperature(read_header(key).name):
+            self._take_temperature(key, text, by, cell)
+        else:
+            self._leave(key, text, cell)
 
+    def _take_word(self, key: str, text: str, by: str) -> None:
+        """What the person or a mapping says: by its name, else as files spell it."""
+        name = key if key in NAMES else canonical(key)
+        if key.casefold().startswith("column "):
+            self.stated.columns[key[len("column ") :].strip()] = text
+        elif name in NAMES:
+            self._take_name(name, key, text, by, "")
+        elif name:
+            self._take_condition(name, key, text, by, "")
+        elif key in self._own:
+            self._take_own(key, text, by)
+        else:
+            known = ", ".join(NAMES)
+            remedy = f"one of {known}; a condition (temperature_ambient, supply_voltage ...); or 'column C'"
+            self._ask(key, "", f"{key!r} ({by}) is nothing that can be stated", remedy)
 
-def _take(stated: Stated, key: str, text: str, by: str, cell: str) -> None:
-    text = text.strip()
-    if not text or text in ("-", "—"):
-        return
-    if key.casefold().startswith("column "):
-        stated.columns[key[7:].strip()] = text
-        return
-    calibration = _CALIBRATION.match(key)
-    if calibration:
-        _take_calibration(stated, calibration["asset"] or "instrument", text, by, cell, key)
-        return
-    name = canonical(key)
-    if name == "temperature" and re.match(r"[+\-−]?[0-9]", text):
-        _take_temperature(stated, key, text, by, cell)
-    elif name in NAMES:
-        _take_name(stated, name, key, text, by, cell)
-    elif name:
-        _take_condition(stated, name, key, text, by, cell)
-    elif "uncertainty" in key.casefold():
-        stated.uncertainty_keys[key] = Said(text, by, key)
-    elif is_unlocated_temperature(read_header(key).name):
-        _take_temperature(stated, key, text, by, cell)
-    elif by in (PERSON, MAPPING):
-        stated.conditions.setdefault(key, StatedCondition(key, text, "", by))
-        stated.readings.append(ColumnReading(key, cell, Role.CONDITION, f"{key} = {text}", by))
-    else:
-        stated.unused.append(f"{cell}: {key} = {text[:60]}")
+    def _take_name(self, name: str, key: str, text: str, by: str, cell: str) -> None:
+        if name == "date" and read_day(text) is None:
+            self._ask(key, cell, f"{text!r} is no date with one meaning", "say --state date=YYYY-MM-DD")
+            return
+        choices = _CHOICES.get(name)
+        if cell and choices and text.casefold() not in {choice.value for choice in choices}:
+            self._leave(key, text, cell)  # "Method: TP 4, annex B" of a sheet is another method than ours
+            return
+        if name == "item":
+            self.stated.items.append(Said(text, by, key))
+        known = self.stated.said.get(name)
+        if known is not None:
+            self._compare(known, name, key, text, cell)
+            return
+        self.stated.said[name] = Said(text, by, key)
+        self._show(key, cell, f"{name.replace('_', ' ')}: {text}", by)
 
+    def _compare(self, known: Said, name: str, key: str, text: str, cell: str) -> None:
+        """A thing that is said twice: the person stands; a mapping and a file that disagree are asked about."""
+        if known.text.casefold() == text.casefold() or name == "item":
+            return
+        if known.by == MAPPING and cell:
+            what = f"the mapping says {known.text}, the file says {text}"
+            self._ask(key, cell, what, f"say which holds for this file: --state {name}=...")
+        elif cell:
+            self._leave(key, text, cell)
 
-def _take_name(stated: Stated, name: str, key: str, text: str, by: str, cell: str) -> None:
-    if name == "date" and read_day(text) is None:
-        stated.questions.append(
-            Question(key, cell, f"{text!r} is no date with one meaning", "say --state date=YYYY-MM-DD")
-        )
-        return
-    if not _is_new(stated, stated.said.get(name), key, text, by, cell):
-        return
-    stated.said[name] = Said(text, by, key)
-    stated.readings.append(ColumnReading(key, cell, Role.STATED, f"{name.replace('_', ' ')}: {text}", by))
-
-
-def _is_new(stated: Stated, known: Said | None, key: str, text: str, by: str, cell: str) -> bool:
-    """Whether a fact says something new; a mapping and a file that disagree are asked about."""
-    if known is None:
-        return True
-    if known.by == MAPPING and by != PERSON and known.text.casefold() != text.casefold():
-        stated.questions.append(
-            Question(
-                key,
-                cell,
-                f"the mapping says {known.text}, the file says {text}",
-                f"say which holds for this file: --state {known.key or key}=...",
+    def _take_condition(self, name: str, key: str, text: str, by: str, cell: str) -> None:
+        known = known_dimension(name)
+        if known is None or known.comparison is Comparison.TEXT:
+            found: StatedCondition | str = StatedCondition(name, text, "", by)
+        elif (
+            cell
+            and "temperature" not in name
+            and (not re.search(r"[0-9]", text) or re.search(r"\d:\d\d", text))
+        ):
+            self._leave(key, text, cell)  # "Level: qualification", "Time: 14:32"
+            return
+        else:
+            found = _number(name, known.unit, text, read_header(key).unit, by)
+        if isinstance(found, str):
+            self.stated.doubts.setdefault(
+                name, Question(key, cell, found, f"say --state {name}=VALUE with its unit")
             )
+            return
+        before = self.stated.conditions.get(name)
+        if before is not None:
+            self._compare_condition(before, found, key, cell)
+            return
+        self.stated.conditions[name] = found
+        meaning = f"{name.replace('_', ' ')} = {found.words()} for all rows"
+        self.stated.readings.append(ColumnReading(key, cell, Role.CONDITION, meaning, by))
+
+    def _compare_condition(
+        self, before: StatedCondition, found: StatedCondition, key: str, cell: str
+    ) -> None:
+        if before.words().casefold() == found.words().casefold() or before.by == PERSON:
+            return
+        who = "the mapping" if before.by == MAPPING else before.by.removeprefix("stated in ")
+        what = f"{who} says {before.words()}, the file says {found.words()}"
+        remedy = f"say which holds for this file: --state {found.dimension}=..."
+        self.stated.doubts[found.dimension] = Question(key, cell, what, remedy)
+
+    def _take_own(self, name: str, text: str, by: str) -> None:
+        """A dimension of this project: a number with its unit, else a word."""
+        try:
+            quantity = parse_quantity(text)
+            value = float(quantity.value)
+            found = StatedCondition(name, value, format_unit(quantity.unit), by)
+        except UnitError:
+            found = StatedCondition(name, text, "", by)
+        self.stated.conditions[name] = found
+        self.stated.readings.append(
+            ColumnReading(name, "", Role.CONDITION, f"{name} = {found.words()} for all rows", by)
         )
-    return False
+
+    def _take_temperature(self, key: str, text: str, by: str, cell: str) -> None:
+        location = self.stated.text("temperature")
+        dimension = find_dimension(f"temperature {location}") if location else None
+        if dimension is not None:
+            self._take_condition(dimension.name, key, text, by, cell)
+            return
+        remedy = f"{unlocated_temperature_hint()}: --state temperature=ambient"
+        self._ask(key, cell, "a temperature that does not say whose", remedy)
+
+    def _take_calibration(self, asset: str, key: str, text: str, by: str, cell: str) -> None:
+        due = read_day(text)
+        if due is None:
+            self._ask(key, cell, f"{text!r} is no date with one meaning", "write it as YYYY-MM-DD")
+            return
+        self.stated.equipment.append(Equipment(asset=asset, calibration_due=due))
+        self._show(key, cell, f"{asset}, calibrated until {due}", by)
+
+    def _ask(self, header: str, cell: str, what: str, remedy: str) -> None:
+        self.stated.questions.append(Question(header, cell, what, remedy))
+
+    def _show(self, key: str, cell: str, meaning: str, by: str) -> None:
+        self.stated.readings.append(ColumnReading(key, cell, Role.STATED, meaning, by))
+
+    def _leave(self, key: str, text: str, cell: str) -> None:
+        self.stated.unused.append(f"{cell}: {key} = {text[:60]}")
 
 
-def _take_condition(stated: Stated, name: str, key: str, text: str, by: str, cell: str) -> None:
-    known = known_dimension(name)
-    numeric = known is not None and known.comparison is not Comparison.TEXT
-    found: StatedCondition | str = StatedCondition(name, text, "", by)
-    if numeric:
-        found = _number(name, known.unit if known else "", text, read_header(key).unit, by)
-    if isinstance(found, str):
-        stated.questions.append(Question(key, cell, found, f"say --state {name}=VALUE with its unit"))
-        return
-    before = stated.conditions.get(name)
-    if before is not None:
-        _is_new(stated, Said(_words(before), before.by, name), key, _words(found), by, cell)
-        return
-    stated.conditions[name] = found
-    meaning = f"{name.replace('_', ' ')} = {_words(found)} for all rows"
-    stated.readings.append(ColumnReading(key, cell, Role.CONDITION, meaning, by))
+def _meant(name: str, text: str) -> str:
+    """ "Unit: SN 0007" speaks of a specimen, "Unit: dB" of a unit."""
+    return "item" if name == "unit" and known_unit(text) is None else name
 
 
 def _number(name: str, wanted: str, text: str, unit: str, by: str) -> StatedCondition | str:
     """The condition, or the sentence that says why the text is none."""
+    title = name.replace("_", " ")
     if _NOT_ONE_VALUE.search(text):
-        return f"{text!r} is a range, not the {name.replace('_', ' ')} that was set"
+        return f"{text!r} is a range, not the {title} that was set"
     try:
-        quantity = parse_quantity(text if not unit or text.endswith(unit) else f"{text} {unit}")
+        written = text if not unit or text.endswith(unit) else f"{text} {unit}"
+        quantity = parse_quantity(written if wanted else f"{written} 1")
     except UnitError as error:
-        if not wanted:
-            try:
-                quantity = parse_quantity(f"{text} 1")
-            except UnitError:
-                return error.message
-        else:
-            return error.message
+        return f"{title}: {error.message}"
     if not compatible(quantity.unit, parse_unit(wanted or "1")):
-        return f"{name.replace('_', ' ')} in {quantity.unit}: expected is a unit like {wanted or 'none'}"
-    written = format_unit(quantity.unit)
-    return StatedCondition(name, float(quantity.value), "" if written == "1" else written, by)
-
-
-def _words(condition: StatedCondition) -> str:
-    value = f"{condition.value:.12g}" if isinstance(condition.value, float) else condition.value
-    return f"{value} {condition.unit}".strip()
-
-
-def _take_temperature(stated: Stated, key: str, text: str, by: str, cell: str) -> None:
-    location = stated.text("temperature")
-    dimension = find_dimension(f"temperature {location}") if location else None
-    if dimension is not None:
-        _take_condition(stated, dimension.name, dimension.name, text, by, cell)
-        return
-    stated.questions.append(
-        Question(
-            key,
-            cell,
-            "a temperature that does not say whose",
-            f"{unlocated_temperature_hint()}: --state temperature=ambient",
-        )
-    )
-
-
-def _take_calibration(stated: Stated, asset: str, text: str, by: str, cell: str, key: str) -> None:
-    due = read_day(text)
-    if due is None:
-        stated.questions.append(
-            Question(key, cell, f"{text!r} is no date with one meaning", "write it as YYYY-MM-DD")
-        )
-        return
-    stated.equipment.append(Equipment(asset=asset, calibration_due=due))
-    stated.readings.append(ColumnReading(key, cell, Role.STATED, f"{asset}, calibrated until {due}", by))
+        return f"{title} in {quantity.unit}: expected is a unit like {wanted or 'none'}"
+    spelled = format_unit(quantity.unit)
+    return StatedCondition(name, float(quantity.value), "" if spelled == "1" else spelled, by)

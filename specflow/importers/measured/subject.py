@@ -8,7 +8,7 @@ from difflib import get_close_matches
 
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.result import Question
-from specflow.importers.measured.stated import Stated
+from specflow.importers.measured.stated import PERSON, Said, Stated
 from specflow.importers.measured.tables import FoundTable
 from specflow.model.base import code_key
 from specflow.model.block import Block
@@ -72,14 +72,21 @@ def item_notes(items: TextColumn, context: Context, block: Block | None) -> list
     return notes
 
 
-def item_name(text: str, context: Context) -> str:
-    """Return the item that a line like "DUT: SN 0007" means: as the project knows it, else as written."""
+def item_name(said: Sequence[Said], context: Context) -> str:
+    """Return the item that lines like "DUT: SN 0007" mean: the first that the project knows, else a serial as written.
+
+    The person's word stands, whether it is known or not.
+    """
     known = context.snapshot.items_by_name
-    bare = _LEADING_WORD.sub("", text)
-    for name in (text, bare, f"SN{bare}", f"SN-{bare}", f"SN {bare}"):
-        if code_key(name) in known:
-            return name
-    return text
+    for one in said:
+        bare = _LEADING_WORD.sub("", one.text)
+        for name in (one.text, bare, f"SN{bare}", f"SN-{bare}", f"SN {bare}"):
+            if code_key(name) in known:
+                return name
+        if one.by == PERSON:
+            return one.text
+    serials = [one.text for one in said if "s" in one.key.casefold()[:2]]
+    return next(iter([*serials, *(one.text for one in said)]), "")
 
 
 def _named(name: str, blocks: Sequence[Block]) -> Block | None:

@@ -71,7 +71,7 @@ def value_of(
     quantity = QuantityIdentity(
         parameter=parameter.key,
         plane=heading.hints.plane or named.plane or stated.text("plane"),
-        statistic=heading.hints.statistic or named.statistic or stated.text("statistic"),
+        statistic=heading.hints.statistic or named.statistic or _stated_statistic(parameter, stated),
         bandwidth_hz=bandwidth,
         polarisation=heading.hints.polarisation or named.polarisation,
     )
@@ -113,6 +113,12 @@ def _bandwidth(heading: Heading, parameter: Parameter, unit: str, stated: Stated
     if amount.unit.dimension != "frequency":
         raise UnitError(f"the bandwidth {text!r} is no frequency")
     return float(amount.value) * amount.unit.scale
+
+
+def _stated_statistic(parameter: Parameter, stated: Stated) -> str:
+    """What is stated for the table, where the parameter has such a statistic: a detector says nothing of a gain."""
+    said = stated.text("statistic").casefold()
+    return next((one for one in parameter.statistics if one.casefold() == said), "")
 
 
 def _spectrum(text: str) -> SpectrumKind:

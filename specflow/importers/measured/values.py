@@ -54,8 +54,6 @@ def column_numbers(work: TableWork, meaning: ColumnMeaning) -> Numbers:
     numbers = read_numbers(work.table, meaning.column, meaning.unit, work.rows, work.rejects)
     if numbers.problem:
         work.questions.append(meaning.asks(numbers.problem, ONE_FORMAT))
-    if meaning.column in work.table.grid.hidden_columns:
-        work.notes.append(f"column {meaning.letter} is hidden in the file; it was read")
     _reject_merged(work, meaning.column, numbers)
     _doubt_sign(work, meaning, numbers)
     work.notes += [f"column {meaning.letter}: {note}" for note in numbers.notes]
@@ -134,7 +132,7 @@ def _spread(work: TableWork, value: ColumnMeaning, numbers: Numbers, conditions:
 
 def _stated_uncertainty(work: TableWork, value: ColumnMeaning) -> Said | None:
     """What is stated for this column: by its quantity, else for the table if it can only mean this one."""
-    for said in work.stated.uncertainty_keys.values():
+    for said in work.stated.uncertainties:
         if _names(said.key, value):
             return said
     said_of_all = work.stated.said.get("uncertainty")

@@ -7,8 +7,8 @@ from datetime import date, datetime, time, timedelta
 import numpy as np
 
 from specflow.importers.measured.cells import Rows
+from specflow.importers.measured.day import read_day
 from specflow.importers.measured.rejects import Rejects
-from specflow.importers.measured.stated import read_day
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.readers import OddKind, Value
 from specflow.model.columns import TextColumn

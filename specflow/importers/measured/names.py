@@ -1,0 +1,66 @@
+"""The names of what may be stated for a whole table, and how files spell them."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Mapping
+
+from specflow.conditions import find_dimension
+from specflow.importers.measured.header_text import read_header
+
+#: What may be stated, with the keys that files use for it. The name itself is for the person and for mappings, and is a
+#: key of files only where it is listed.
+NAMES: Mapping[str, tuple[str, ...]] = {
+    "block": ("block", "assembly", "module", "unit type", "block under test"),
+    "item": ("item", "dut", "uut", "device", "device under test", "unit under test", "serial", "serial number",
+             "serial no", "s/n", "sn", "specimen", "sample", "item under test", "eut"),
+    "requirement": ("requirement", "requirement id", "req", "req id"),
+    "method": ("method", "verification method"),
+    "stage": ("stage", "verification stage"),
+    "set_up": ("set-up", "setup", "set up", "test set-up", "test setup", "bench", "test bench", "test range"),
+    "performer": ("lab", "laboratory", "test house", "test laboratory", "performer"),
+    "operator": ("operator", "tested by", "test engineer", "measured by", "performed by", "engineer"),
+    "date": ("date", "test date", "measured on", "performed on", "date of test", "measurement date"),
+    "procedure": ("procedure", "test procedure", "procedure number"),
+    "procedure_revision": ("procedure revision", "procedure rev", "procedure issue"),
+    "model": ("simulation model",),
+    "model_version": ("simulation version", "simulator version", "model version"),
+    "validated": ("model validation", "simulation validated"),
+    "hardware": ("hardware", "hardware note", "hw", "hardware revision", "build standard"),
+    "bandwidth": ("rbw", "resolution bandwidth", "reference bandwidth", "measurement bandwidth", "res bw", "ref bw"),
+    "spectrum": ("spectrum", "spectrum kind", "signal kind"),
+    "plane": ("plane", "reference plane", "referred to", "measurement plane"),
+    "statistic": ("statistic", "detector"),
+    "unit": ("unit", "units"),
+    "uncertainty": ("uncertainty", "measurement uncertainty", "mu", "u", "expanded uncertainty",
+                    "standard uncertainty"),
+    "temperature": (),
+    "corrections": ("correction", "corrections", "corrections applied"),
+}  # fmt: skip
+
+#: What is said above the first table of a sheet holds for those below it, too; conditions and uncertainties do not.
+OF_THE_SHEET = frozenset(
+    ("block", "item", "method", "stage", "set_up", "performer", "operator", "date", "procedure", "procedure_revision",
+     "model", "model_version", "validated", "hardware")
+)  # fmt: skip
+
+
+def _plain(text: str) -> str:
+    return re.sub(r"[\s_./-]+", "", text.casefold())
+
+
+_SPELLINGS = {_plain(spelling): name for name, spellings in NAMES.items() for spelling in spellings}
+
+
+def name_of(key: str) -> str:
+    """Return which of ``NAMES`` a key of a file means, "" if none."""
+    return _SPELLINGS.get(_plain(key)) or _SPELLINGS.get(_plain(read_header(key).name), "")
+
+
+def canonical(key: str) -> str:
+    """Return what a key of a file means: one of ``NAMES``, a dimension, or "" when it is neither."""
+    name = name_of(key)
+    if name:
+        return name
+    dimension = find_dimension(read_header(key).name) or find_dimension(key)
+    return dimension.name if dimension else ""
