@@ -109,7 +109,8 @@ class PointResults:
     """What is known of each required point of one activity by one item (or by all, where they may complete it).
 
     All arrays have n entries, one a required point: ``verdict`` (int8, codes of Verdict), ``proved`` (bool: a
-    governing verdict that passes, from evidence with credit), ``margin`` and ``guarded_margin`` (float64 in ``unit``,
+    governing verdict that passes, from evidence with credit), ``counted`` (bool: the governing reading weighs: it has
+    credit, or it fails), ``margin`` and ``guarded_margin`` (float64 in ``unit``,
     NaN without evidence), ``table`` (int32 into ``tables``, -1 without evidence), ``column`` (int32 into the value
     columns of that table) and ``row`` (int32): the governing record.
     """
@@ -117,6 +118,7 @@ class PointResults:
     item: str
     verdict: NDArray[np.int8]
     proved: NDArray[np.bool_]
+    counted: NDArray[np.bool_]
     margin: NDArray[np.float64]
     guarded_margin: NDArray[np.float64]
     value_low: NDArray[np.float64]
@@ -142,6 +144,12 @@ class PointResults:
     def unproved(self) -> list[int]:
         """The points that are not proved and do not fail either."""
         return np.flatnonzero(~self.proved & (self.verdict < Verdict.CONDITIONAL_FAIL)).tolist()
+
+    @property
+    def without_credit(self) -> list[int]:
+        """The points at which a reading passes and may not prove them, whatever else may be lacking."""
+        passing = self.verdict <= Verdict.CONDITIONAL_PASS
+        return np.flatnonzero(passing & ~self.counted & (self.table >= 0)).tolist()
 
     @property
     def without_uncertainty(self) -> list[int]:

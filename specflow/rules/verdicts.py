@@ -206,16 +206,9 @@ def no_credit(facts: Facts) -> Iterator[Found]:
     for requirement, status in facts.defined:
         for activity in status.activities:
             results = shown(activity)
-            if results is None or status.stale or _has_ranges(requirement, facts):
+            if results is None or status.stale or not activity.why:
                 continue
-            passing = set(results.points_with(Verdict.PASS, Verdict.CONDITIONAL_PASS))
-            idle = sorted(passing.intersection(results.unproved))
-            if idle and activity.why:
-                message = f"{counted(len(idle), 'point')} of {activity.activity} pass without credit: "
+            idle = len(results.without_credit)
+            if idle:
+                message = f"{counted(idle, 'point')} of {activity.activity} pass without credit: "
                 yield Found(requirement.id, message + listed(activity.why, 2), related=(activity.activity,))
-
-
-def _has_ranges(requirement: Requirement, facts: Facts) -> bool:
-    """Whether points are ranges: there a reading that passes may leave its point unproved for want of others."""
-    points = facts.points(requirement)
-    return points is not None and bool(points.step)

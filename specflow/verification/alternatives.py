@@ -88,12 +88,16 @@ def _combined(members: Sequence[ItemPoints], shown: ItemPoints, looser: bool) ->
     if not looser:
         failing = (effective >= Verdict.CONDITIONAL_FAIL).any(axis=0)
         verdict = np.where(~failing & (effective == Verdict.NONE).any(axis=0), np.int8(Verdict.NONE), verdict)
-    results = replace(shown.results, verdict=np.where(counts, verdict, shown.results.verdict), proved=whole)
+    results = replace(
+        shown.results,
+        verdict=np.where(counts, verdict, shown.results.verdict),
+        proved=whole,
+        counted=counts,
+    )
     return replace(
         shown,
         results=results,
         effective=verdict.astype(np.int8),
-        counts=counts,
         stale=np.logical_or.reduce([one.stale for one in members]),
     )
 

@@ -67,7 +67,6 @@ class ItemPoints:
     results: PointResults
     tables: Sequence[EvidenceTable]
     effective: Codes
-    counts: Flags
     rank: Codes
     stale: Flags
     marginal: Flags
@@ -76,6 +75,11 @@ class ItemPoints:
     def proved(self) -> Flags:
         """Which points are proved."""
         return self.results.proved
+
+    @property
+    def counts(self) -> Flags:
+        """At which points the governing reading weighs."""
+        return self.results.counted
 
 
 def item_points(bench: Bench, *, together: bool) -> list[ItemPoints]:
@@ -119,8 +123,8 @@ def _without_evidence(bench: Bench) -> ItemPoints:
         return nobody
     free = bench.nothing_required
     verdict = np.where(free, np.int8(Verdict.NOT_TRIGGERED), nobody.effective)
-    results = replace(nobody.results, verdict=verdict, proved=free)
-    return replace(nobody, results=results, effective=verdict, counts=free)
+    results = replace(nobody.results, verdict=verdict, proved=free, counted=free)
+    return replace(nobody, results=results, effective=verdict)
 
 
 def _by_item(bench: Bench, together: bool) -> tuple[Sequence[str], Rows | None, Rows]:
@@ -244,12 +248,11 @@ def _items(grid: _Grid, names: Sequence[str], counts: Flags, governing: Rows) ->
         ItemPoints(
             name,
             PointResults(
-                name, verdict[i], proved[i], margin[i], guarded[i], low[i], high[i], u[i], lower[i], upper[i],
-                source[i], column[i], row[i], ids,
+                name, verdict[i], proved[i], counted[i], margin[i], guarded[i], low[i], high[i], u[i],
+                lower[i], upper[i], source[i], column[i], row[i], ids,
             ),
             tables,
             effective[i],
-            counted[i],
             rank[i],
             stale[i],
             marginal[i],
@@ -292,6 +295,7 @@ def absent(item: str, n: int) -> ItemPoints:
         item,
         verdict,
         false,
+        false,
         nothing,
         nothing,
         nothing,
@@ -304,4 +308,4 @@ def absent(item: str, n: int) -> ItemPoints:
         none,
         (),
     )
-    return ItemPoints(item, results, (), verdict, false, np.full(n, -1, np.int8), false, false)
+    return ItemPoints(item, results, (), verdict, np.full(n, -1, np.int8), false, false)

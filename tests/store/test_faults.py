@@ -230,7 +230,7 @@ def test_opened_to_be_read_only(where: str) -> None:
     with open_project(where, read_only=True) as store:
         assert store.load().revision == 1
         assert len(store.history()) == 1
-        with pytest.raises(StoreError, match="read only"):
+        with pytest.raises(StoreError, match=r"read.only"):
             store.apply(adding(a_block()), by=ME)
 
 
@@ -246,7 +246,7 @@ def test_a_file_and_folder_that_may_not_be_written(read_only: bool, mode: int) -
         with not_as_root(), open_project(path, read_only=read_only) as store:
             assert store.load().project == a_project()
             assert len(store.history()) == 1
-            with pytest.raises(StoreError, match="read.only"):
+            with pytest.raises(StoreError, match=r"read.only"):
                 store.apply(adding(a_block()), by=ME)
         assert [file.name for file in Path(folder).iterdir()] == [path.name]
         Path(folder).chmod(0o755)
