@@ -152,7 +152,7 @@ def _nothing_required(limit: Limit, points: Points, workspace: Workspace) -> NDA
     if is_plain(limit) or (not tree_names(limit.tree) and limit.tree.kind != "no_limit"):
         return None
     every = np.arange(points.size)
-    columns = limit_columns(limit, points, None, every, every)
+    columns = limit_columns(limit, points, None, every, every, workspace.declared)
     bounds = evaluate_limit(limit, LimitContext(columns, workspace.declared, points.size))
     nothing = ~bounds.applies & ~bounds.unknown
     return np.broadcast_to(nothing, (points.size,)) if nothing.any() else None

@@ -63,8 +63,9 @@ class Judging:
         return self._judged(self.limit, served), False
 
     def _judged(self, limit: Limit, served: Served) -> Readings:
-        columns = limit_columns(limit, self.points, self.conditions, served.record, served.point)
-        context = LimitContext(columns, self.workspace.declared, len(served.record))
+        declared = self.workspace.declared
+        columns = limit_columns(limit, self.points, self.conditions, served.record, served.point, declared)
+        context = LimitContext(columns, declared, len(served.record))
         rule = self.requirement.decision_rule
         return judge(self.records, served, Judgement(limit, limit.unit, rule, self.workspace.policy, context))
 

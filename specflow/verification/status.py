@@ -139,7 +139,7 @@ def _judged_against(
             f"it is in {limit.unit or 'no unit'}, the requirement in {requirement.limit.unit}"
         )
     every = np.arange(found.points.size)
-    columns = limit_columns(limit, found.points, None, every, every)
+    columns = limit_columns(limit, found.points, None, every, every, workspace.declared)
     bounds = evaluate_limit(limit, LimitContext(columns, workspace.declared, found.points.size))
     results, rule = one.results, requirement.decision_rule
     guard = 0.0 if rule.name is RuleName.SIMPLE else guard_band(rule.guard_factor, results.u)
