@@ -14,13 +14,17 @@ from specflow.conditions.dictionary import (
     KnownDimension,
 )
 
+#: Angles written as letters are spelled out: "Beam θ" is "beam theta". NFKC and casefold leave these two forms.
+_GREEK = str.maketrans({"θ": "theta", "φ": "phi"})
 _LOCATIONS_HINT = "ambient, baseplate, case, junction or board"
 
 
 def spelling_key(text: str) -> str:
-    """Return what two spellings of a dimension are compared by: no case, no unit in brackets, no punctuation."""
+    """Return what two spellings of a dimension are compared by: no case, no unit in brackets, no punctuation,
+    angles spelled out.
+    """
     bare = re.sub(r"[\[(].*?[\])]", " ", unicodedata.normalize("NFKC", text)).casefold()
-    return re.sub(r"[\s_.\-/]+", "", bare).strip()
+    return re.sub(r"[\s_.\-/]+", "", bare).translate(_GREEK)
 
 
 @lru_cache(maxsize=1)

@@ -6,7 +6,14 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from specflow.conditions import find_dimension, is_unlocated_temperature, parse_dimension, read_dimension
+from specflow.conditions import (
+    KNOWN_DIMENSIONS,
+    find_dimension,
+    is_unlocated_temperature,
+    parse_dimension,
+    read_dimension,
+)
+from specflow.conditions.dimensions import spelling_key
 from specflow.errors import ConditionsError
 from specflow.model.conditions import MatchingRule, Need, Span
 
@@ -177,11 +184,35 @@ def test_contradicting_cells_are_refused() -> None:
         ("phi", "phi"),
         ("Pol.", "polarisation"),
         ("BW", "channel_bandwidth"),
+        ("Θ [°]", "theta"),
+        ("ϑ", "theta"),
+        ("ϕ (deg)", "phi"),
+        ("θ angle", "theta"),
+        ("Beam θ [deg]", "scan_theta"),
+        ("Beam φ [deg]", "scan_phi"),
+        ("Scan θ", "scan_theta"),
+        ("Scan ϕ", "scan_phi"),
+        ("θ_scan", "scan_theta"),
+        ("phi_scan [deg]", "scan_phi"),
+        ("θ beam", "scan_theta"),
+        ("Steering θ", "scan_theta"),
+        ("Steering φ", "scan_phi"),
+        ("Steering angle [deg]", "scan_theta"),
+        ("Beam steering angle", "scan_theta"),
+        ("Scan az", "scan_azimuth"),
+        ("Steering elevation", "scan_elevation"),
     ],
 )
 def test_spellings_met_in_sheets(spelling: str, name: str) -> None:
     found = find_dimension(spelling)
     assert found is not None and found.name == name
+
+
+def test_no_spelling_means_two_dimensions() -> None:
+    meant: dict[str, str] = {}
+    for known in KNOWN_DIMENSIONS:
+        for spelling in (known.name, known.title, *known.aliases):
+            assert meant.setdefault(spelling_key(spelling), known.name) == known.name, spelling
 
 
 def test_a_temperature_without_a_place_is_found_by_nobody() -> None:
