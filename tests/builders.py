@@ -279,13 +279,21 @@ def a_waiver(id: str = "W-1", requirement: str = "R-1", **fields: Any) -> Waiver
 def a_budget(id: str = "B-1", **fields: Any) -> Budget:
     """Return a gain budget of two blocks for the requirement R-1."""
     lines = (
-        BudgetLine(position=1, block="LNA", parameter="gain", value=20.0, unit="dB"),
-        BudgetLine(position=2, block="MIX", parameter="gain", value=-7.0, unit="dB"),
+        a_budget_line(1, "LNA", "gain", 20.0),
+        a_budget_line(2, "MIX", "gain", -7.0),
     )
     return Budget(
-        **{"id": id, "requirements": ("R-1",), "quantity": a_quantity(), "law": "gain sum", "lines": lines}
+        **{"id": id, "requirements": ("R-1",), "quantity": a_quantity(), "law": "cascade", "lines": lines}
         | fields
     )
+
+
+def a_budget_line(
+    position: int = 1, block: str = "LNA", parameter: str = "gain", value: Any = 20.0, **fields: Any
+) -> BudgetLine:
+    """Return a line of a budget, in dB."""
+    named = {"position": position, "block": block, "parameter": parameter, "value": value, "unit": "dB"}
+    return BudgetLine(**named | fields)
 
 
 def a_status(requirement: str = "R-1", **fields: Any) -> RequirementStatus:

@@ -10,7 +10,8 @@ from typing import Any
 from specflow.changes.meaning import TOGETHER, Difference, meaning_of
 from specflow.model.base import Document, code_key
 from specflow.model.block import Plane, PlanePath
-from specflow.model.budget import BudgetLine
+from specflow.model.budget import BudgetLine, BudgetPosition
+from specflow.model.budget_line import Constant
 from specflow.model.change import FieldChange
 from specflow.model.conditions import Dimension, Exclusion, MapEntry
 from specflow.model.evidence import ConditionColumn, Equipment, LeftOut, ValueColumn
@@ -26,6 +27,7 @@ UNSEEN = frozenset({"revision", "origin"})
 MEMBER_NAMES: Mapping[type[Document], tuple[str, ...]] = {
     Plane: ("name",),
     PlanePath: ("start", "end"),
+    BudgetPosition: ("order", "block"),
     BudgetLine: ("position", "block", "parameter"),
     Dimension: ("name",),
     Exclusion: ("text",),
@@ -91,6 +93,8 @@ def field_text(value: Any) -> str:
             return format_value(value)
         case Enum():
             return str(value.value)
+        case Constant(value=number):
+            return format_value(number)
         case date():
             return value.isoformat()
         case Limit() | Dimension() | Exclusion() | MapEntry() if value.text:

@@ -25,6 +25,7 @@ from specflow.model.snapshot import Snapshot
 from tests.builders import (
     a_block,
     a_budget,
+    a_budget_line,
     a_conditions_set,
     a_declared_value,
     a_dimension,
@@ -246,7 +247,7 @@ def test_parts_of_a_nested_document_are_told_one_by_one() -> None:
 
 def test_of_a_list_only_the_members_that_differ_are_told() -> None:
     known = a_budget()
-    lines = (known.lines[0].model_copy(update={"value": 19.5}), known.lines[1])
+    lines = (a_budget_line(value=19.5), known.lines[1])
     (field,) = only_change(known, known.model_copy(update={"lines": lines})).fields
     assert "20" in field.before and "19.5" in field.after
     assert "MIX" not in field.before + field.after

@@ -48,7 +48,7 @@ _PLAIN: Mapping[str, tuple[type[Document], Callable[[Fields], Fields]]] = {
     "blocks": (Block, lambda row: {"name": row["id"], "tier": "block"}),
     "items": (Item, lambda row: {"serial": row["id"], "hardware_type": "qualification"}),
     "allocations": (Allocation, lambda row: {"id": f"{row['parent']}/{row['child']}"}),
-    "budgets": (Budget, lambda row: {"law": "gain sum"}),
+    "budgets": (Budget, lambda row: {"law": "cascade"}),
     "changes": (ItemChange, lambda row: {"description": "changed"}),
     "supersessions": (Supersession, lambda row: {"id": f"{row['earlier']}/{row['later']}"}),
     "withdrawals": (Withdrawal, lambda row: {"id": f"{row['table']}/out"}),

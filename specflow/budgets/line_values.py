@@ -1,0 +1,58 @@
+"""What a line comes to at the block's own conditions, in its own unit. Nothing is extrapolated or clamped."""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.budgets.interpolation import interpolated, refuse_outside
+from specflow.budgets.own_conditions import numbers
+from specflow.budgets.traces import trace_values
+from specflow.model.budget_line import BudgetLine, ConditionTable, Constant, Drift, TouchstoneTrace, Trace
+from specflow.model.columns import Columns
+from specflow.model.snapshot import Snapshot
+
+Floats = NDArray[np.float64]
+_CLOSE = 1e-9  # relative: a place that was converted is still the same place
+
+
+def line_values(line: BudgetLine, own: Columns, snapshot: Snapshot, where: str) -> Floats:
+    """Return the values of a line at each of the block's conditions, float64 (n,) or (1,) where all are the same.
+
+    ConditionsError where the line does not cover a condition, with the range it has and the range that is needed.
+    """
+    match line.value:
+        case Constant(value=value):
+            values = np.array([value])
+        case ConditionTable() as table:
+            values = _table_values(table, own, where, line)
+        case TouchstoneTrace() as trace:
+            place = numbers(own, trace.dimension, "Hz", where, f"{trace.file} {trace.entry}")
+            at = np.array(trace.frequency_hz)
+            refuse_outside(place, at[0], at[-1], trace.dimension, "Hz", where, f"{trace.file} {trace.entry}")
+            values = np.interp(place, at, np.array(trace.values_db))
+        case Trace() as trace:
+            values = trace_values(trace, line, own, snapshot, where)
+    for drift in line.drifts:
+        values = values + _drift_values(drift, own, where, line)
+    return values
+
+
+def _table_values(table: ConditionTable, own: Columns, where: str, line: BudgetLine) -> Floats:
+    what = f"the table of {line.parameter}"
+    place = numbers(own, table.dimension, table.dimension_unit, where, what)
+    at, values = np.array(table.at), np.array(table.values)
+    refuse_outside(place, at[0], at[-1], table.dimension, table.dimension_unit, where, what)
+    if table.between == "step":
+        index = np.searchsorted(at, place + _CLOSE * np.abs(place), side="right") - 1
+        return np.asarray(values[np.clip(index, 0, len(at) - 1)])
+    return interpolated(place, at, values, table.drawn_in)
+
+
+def _drift_values(drift: Drift, own: Columns, where: str, line: BudgetLine) -> Floats:
+    what = f"the drift of {line.parameter}"
+    place = numbers(own, drift.dimension, drift.dimension_unit, where, what)
+    low = -np.inf if drift.low is None else drift.low
+    high = np.inf if drift.high is None else drift.high
+    refuse_outside(place, low, high, drift.dimension, drift.dimension_unit, where, what)
+    return np.asarray(drift.slope * (place - drift.reference))
