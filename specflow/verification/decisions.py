@@ -15,6 +15,9 @@ from specflow.model.snapshot import Snapshot
 
 D = TypeVar("D")
 
+#: The rule that dispositions of conflicting evidence name.
+CONFLICT_RULE = "conflicting-evidence"
+
 
 @dataclass(frozen=True, slots=True)
 class Decisions:
@@ -54,12 +57,17 @@ class Decisions:
         return tuple(report.id for report in reports if report.state == "open")
 
     def conflict_is_settled(self, requirement: str, as_of: date) -> bool:
-        """Whether somebody disposed of conflicting evidence of a requirement, and the decision still stands."""
-        return any(
-            "conflict" in disposition.rule.casefold()
-            and (disposition.expires_on is None or disposition.expires_on >= as_of)
+        """Whether somebody disposed of conflicting evidence of a requirement by that day, and the decision stands.
+
+        Of several the last one decided holds, as it does for findings.
+        """
+        decided = [
+            disposition
             for disposition in self.dispositions.get(code_key(requirement), ())
-        )
+            if code_key(disposition.rule) == CONFLICT_RULE and disposition.on <= as_of
+        ]
+        last = max(reversed(decided), key=lambda disposition: disposition.on, default=None)
+        return last is not None and (last.expires_on is None or last.expires_on >= as_of)
 
 
 def _by(documents: Iterable[D], subject: Callable[[D], str | None]) -> Mapping[str, Sequence[D]]:

@@ -11,13 +11,18 @@ from specflow.model.block import HardwareType, Tier
 from specflow.model.budget import Allocation
 from specflow.model.decision import Approval, DeclaredSplit, Disposition, Nonconformance
 from specflow.model.evidence import ItemChange, Supersession, Withdrawal
+from specflow.model.finding import Severity
 from specflow.model.limit import Limit, LimitState, Undefined
 from specflow.model.requirement import DecisionRule, Method, Provers, RuleName, Stage
 from specflow.model.verdict import CloseOut, Compliance, Label, PointsState, Standing, Verdict
+from specflow.parameters import load_dictionary
+from specflow.rules import run_rules
+from specflow.verification import evaluate
 from tests.builders import (
     a_block,
     a_declared_value,
     a_requirement,
+    a_snapshot,
     a_waiver,
     an_activity,
     an_evidence_table,
@@ -25,7 +30,7 @@ from tests.builders import (
     at_least,
     some_evidence,
 )
-from tests.verification.evaluating import AS_OF, results_of, status_of
+from tests.verification.evaluating import AS_OF, project, results_of, status_of
 
 
 def approval(**fields: object) -> Approval:
@@ -458,6 +463,34 @@ def test_a_disposition_settles_a_conflict_until_it_expires() -> None:
     assert status_of(table, settled, **two).label is Label.READY
     lapsed = settled.model_copy(update={"expires_on": date(2026, 5, 31)})
     assert status_of(table, lapsed, **two).label is Label.CONFLICTING
+    renewed = settled.model_copy(update={"id": "D-2", "on": date(2026, 5, 1), "expires_on": date(2026, 5, 2)})
+    assert status_of(table, settled, renewed, **two).label is Label.READY, "the last one decided holds"
+
+
+@pytest.mark.parametrize(
+    ("rule", "on", "expires_on", "settles"),
+    [
+        ("conflicting-evidence", AS_OF, None, True),
+        ("Conflicting-Evidence", AS_OF, AS_OF, True),
+        ("conflict", AS_OF, None, False),
+        ("interest-conflict", AS_OF, None, False),
+        ("conflicting-evidence", date(2026, 6, 2), None, False),
+        ("conflicting-evidence", date(2026, 5, 1), date(2026, 5, 31), False),
+    ],
+)
+def test_status_and_rules_take_the_same_dispositions_of_a_conflict(
+    rule: str, on: date, expires_on: date | None, settles: bool
+) -> None:
+    one = Disposition(
+        id="D-1", rule=rule, subject="R-1", reason="cable", by="A", on=on, expires_on=expires_on
+    )
+    two = {"T-1": some_evidence([25, 25, 25], u=0.1), "T-2": some_evidence([24, 25, 25], u=0.1)}
+    snapshot = a_snapshot(*project(an_evidence_table(), an_evidence_table("T-2"), one), columns=two)
+    dictionary = load_dictionary()
+    results = evaluate(snapshot, dictionary, as_of=AS_OF)
+    found = [f for f in run_rules(snapshot, results, dictionary) if f.rule == "conflicting-evidence"]
+    assert results.of("R-1").label is (Label.READY if settles else Label.CONFLICTING)
+    assert [f.severity for f in found] == [Severity.INFO if settles else Severity.ERROR]
 
 
 # Who must prove
