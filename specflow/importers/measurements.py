@@ -2,17 +2,17 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping, Sequence
-from dataclasses import dataclass, replace
+from collections.abc import Mapping, Sequence
+from dataclasses import replace
 from pathlib import Path
 
 from specflow.importers.measured.context import Context
-from specflow.importers.measured.evidence import read_table
-from specflow.importers.measured.facts import Fact, read_preamble
-from specflow.importers.measured.layout import layout_key
-from specflow.importers.measured.mapping import LayoutMapping, read_mappings, write_mapping
+from specflow.importers.measured.document import PROVISIONAL_FILE
+from specflow.importers.measured.evidence import collected, read_table
+from specflow.importers.measured.located import GivenMappings, LocatedTable, locate_tables, unused_layouts
+from specflow.importers.measured.mapping import read_mappings, write_mapping
 from specflow.importers.measured.meaning import read_meanings
-from specflow.importers.measured.proposal import propose
+from specflow.importers.measured.proposal import Proposal, propose
 from specflow.importers.measured.result import (
     ColumnReading,
     MeasuredTable,
@@ -20,10 +20,8 @@ from specflow.importers.measured.result import (
     Question,
     Role,
 )
-from specflow.importers.measured.stated import collect, holds_below
-from specflow.importers.measured.tables import FoundTable, cut_table, find_tables, rows_outside
 from specflow.importers.readers import Grid, GridFile, open_grids, sheet
-from specflow.model.evidence import EvidenceFile, FileKind, TableMapping
+from specflow.model.evidence import EvidenceFile, FileKind
 from specflow.model.finding import Finding, Severity
 from specflow.model.origin import Origin
 from specflow.model.snapshot import Snapshot
@@ -40,16 +38,7 @@ __all__ = [
 
 IMPORTER_VERSION = "measurements 1"
 
-
-@dataclass(frozen=True, slots=True)
-class _Found:
-    """A table with its layout key and the mapping for it ("" when none is known)."""
-
-    table: FoundTable
-    key: str
-    mapping: LayoutMapping
-    mapping_from: str
-    sheet_facts: tuple[Fact, ...] = ()
+_SIMULATED = ("analysis", "similarity")
 
 
 def read_measurements(
@@ -71,35 +60,36 @@ def read_measurements(
     be read; everything about the tables is data.
     """
     context = Context(snapshot, dictionary)
-    given = read_mappings(mapping, mapping_name) if mapping else ()
+    given = GivenMappings(read_mappings(mapping, mapping_name) if mapping else (), mapping_name)
     file = open_grids(path)
     person = dict(stated or {})
-    found: list[_Found] = []
     skipped: list[str] = []
     findings: list[Finding] = []
+    located: list[LocatedTable] = []
     for grid in _chosen(file, sheets, skipped):
-        findings += [_finding(grid, note, Severity.INFO) for note in grid.notes]
-        found += _tables(grid, context, given, snapshot, mapping_name, skipped, findings)
-    tables = tuple(_read(one, context, person, include_hidden_rows) for one in found)
-    if not found:
+        found = locate_tables(grid, context, given)
+        located += found.tables
+        skipped += found.skipped
+        findings += [_finding(grid, note) for note in grid.notes]
+        if found.outside:
+            findings.append(_outside(grid, found.outside))
+    findings += [_unused(file, layout, mapping_name) for layout in unused_layouts(given, located)]
+    tables = [_read(one, context, person, include_hidden_rows) for one in located]
+    if not located:
         findings.append(_nothing(file, skipped))
-    return Measurements(
-        _file(file, person), tables, tuple(findings), tuple(skipped), _proposal(found, context, person)
-    )
+    proposal = _proposal(located, context, person)
+    return Measurements(_file(file, tables, person), tuple(tables), tuple(findings), tuple(skipped), proposal)
 
 
 def _read(
-    found: _Found, context: Context, person: Mapping[str, str], include_hidden_rows: bool
+    located: LocatedTable, context: Context, person: Mapping[str, str], include_hidden_rows: bool
 ) -> MeasuredTable:
-    mapping = found.mapping
     if include_hidden_rows:
-        mapping = replace(mapping, include_hidden_rows=True)
-    table = read_table(
-        found.table, found.key, context, mapping, found.mapping_from, person, found.sheet_facts
-    )
-    if not found.mapping_from:
+        located = replace(located, mapping=replace(located.mapping, include_hidden_rows=True))
+    table = read_table(located, context, person)
+    if not located.mapping_from:
         return table
-    return replace(table, mapping=write_mapping(replace(found.mapping, layout=found.key)))
+    return replace(table, mapping=write_mapping(replace(located.mapping, layout=located.key)))
 
 
 def _chosen(file: GridFile, sheets: Sequence[str], skipped: list[str]) -> list[Grid]:
@@ -107,90 +97,35 @@ def _chosen(file: GridFile, sheets: Sequence[str], skipped: list[str]) -> list[G
         wanted = [sheet(file, name) for name in sheets]
         skipped += [f"sheet {grid.name}: not asked for" for grid in file if grid not in wanted]
         return wanted
-    hidden = [grid for grid in file if grid.hidden]
-    skipped += [f"sheet {grid.name}: it is hidden; --sheet {grid.name!r} reads it" for grid in hidden]
+    skipped += [
+        f"sheet {grid.name}: it is hidden; --sheet {grid.name!r} reads it" for grid in file if grid.hidden
+    ]
     return [grid for grid in file if not grid.hidden]
 
 
-def _tables(
-    grid: Grid,
-    context: Context,
-    given: Sequence[LayoutMapping],
-    snapshot: Snapshot,
-    mapping_name: str,
-    skipped: list[str],
-    findings: list[Finding],
-) -> Iterator[_Found]:
-    tables = find_tables(grid, context.recognises)
-    where = grid.file if grid.name == grid.file else f"sheet {grid.name}"
-    if not tables:
-        skipped.append(f"{where}: no table was found (a row of headers with numbers below)")
-    facts: tuple[Fact, ...] = ()
-    for table in tables:
-        key = layout_key(table)
-        mapping, source = _mapping_for(key, given, snapshot, mapping_name)
-        if mapping.skip:
-            skipped.append(f"{where}, {table.place}: {source} says skip")
-            continue
-        if mapping.header_rows > 1:
-            table = cut_table(grid, table.top, table.header_row, mapping.header_rows, context.recognises)
-        yield _Found(table, key, mapping, source, facts)
-        own = read_preamble(grid, table.top, table.header_row).facts
-        facts = (*filter(holds_below, own), *facts)
-    outside = list(rows_outside(grid, tables)) if tables else []
-    if outside:
-        findings.append(
-            _finding(
-                grid,
-                f"{len(outside)} rows with numbers belong to no table, the first is row {outside[0]}",
-                Severity.ERROR,
-            )
-        )
-
-
-def _mapping_for(
-    key: str, given: Sequence[LayoutMapping], snapshot: Snapshot, name: str
-) -> tuple[LayoutMapping, str]:
-    """The mapping of a layout: from the given file (one without a key fits any layout), else as stored."""
-    for mapping in given:
-        if mapping.layout == key or (not mapping.layout and len(given) == 1):
-            return mapping, f"the mapping file {name}"
-    stored = [one for one in snapshot.all(TableMapping) if one.layout_key == key]
-    if stored:
-        latest = stored[-1]
-        layouts = read_mappings(latest.toml, f"mapping {latest.id}")
-        return layouts[0], f"{latest.id} revision {latest.revision}, recognised by its layout"
-    return LayoutMapping(), ""
-
-
-def _file(file: GridFile, person: Mapping[str, str]) -> EvidenceFile:
-    method = person.get("method", "")
+def _file(file: GridFile, tables: Sequence[MeasuredTable], person: Mapping[str, str]) -> EvidenceFile:
+    """The file as a document; it is a simulation when all its tables are analyses."""
+    methods = {table.document.method for table in tables if table.document is not None}
+    simulated = bool(methods) and methods <= set(_SIMULATED)
     return EvidenceFile(
-        id="F-0",
+        id=PROVISIONAL_FILE,
         name=file.fingerprint.name,
         sha256=file.fingerprint.sha256,
         size=file.fingerprint.size,
         received_at="",
         received_from=person.get("performer", ""),
-        kind=FileKind.SIMULATION if method in ("analysis", "similarity") else FileKind.MEASUREMENT,
+        kind=FileKind.SIMULATION if simulated else FileKind.MEASUREMENT,
         importer_version=IMPORTER_VERSION,
     )
 
 
-def _proposal(found: Sequence[_Found], context: Context, person: Mapping[str, str]) -> str:
-    entries = []
-    for one in found:
-        preamble = read_preamble(one.table.grid, one.table.top, one.table.header_row)
-        stated = collect(
-            preamble.facts,
-            one.mapping.stated,
-            person,
-            sheet_facts=one.sheet_facts,
-            own_dimensions=context.dimensions,
-        )
+def _proposal(located: Sequence[LocatedTable], context: Context, person: Mapping[str, str]) -> str:
+    proposals = []
+    for one in located:
+        stated = collected(one, context, person)
         meanings = read_meanings(one.table, context, one.mapping, stated)
-        entries.append((one.table, one.key, one.mapping, meanings, preamble.title))
-    return propose(entries)
+        proposals.append(Proposal(one.table, one.key, one.mapping, meanings, one.preamble.title))
+    return propose(proposals)
 
 
 def _nothing(file: GridFile, skipped: Sequence[str]) -> Finding:
@@ -205,13 +140,31 @@ def _nothing(file: GridFile, skipped: Sequence[str]) -> Finding:
     )
 
 
-def _finding(grid: Grid, message: str, severity: Severity) -> Finding:
+def _unused(file: GridFile, layout: str, mapping_name: str) -> Finding:
+    return Finding(
+        rule="attach-layout-not-met",
+        severity=Severity.WARNING,
+        subject=file.fingerprint.name,
+        subject_kind="file",
+        message=f"{mapping_name} settles the layout {layout}, which no table of this file has",
+        why="a layout is known by its headers, their units and their order, and by the sheet",
+        remedy="compare it with the layout that --propose-mapping writes for this file",
+    )
+
+
+def _outside(grid: Grid, rows: Sequence[int]) -> Finding:
+    message = f"{len(rows)} rows with numbers belong to no table, the first is row {rows[0]}"
+    remedy = "give them headers, or delete them"
+    return _finding(grid, message, Severity.ERROR, remedy).model_copy(update={"rule": "attach-rows-outside"})
+
+
+def _finding(grid: Grid, message: str, severity: Severity = Severity.INFO, remedy: str = "") -> Finding:
     return Finding(
         rule="attach-reading",
         severity=severity,
         subject=grid.name,
         subject_kind="sheet",
         message=message,
-        remedy="give them headers, or delete them" if severity is Severity.ERROR else "",
+        remedy=remedy,
         origin=Origin(file=grid.file, sheet="" if grid.name == grid.file else grid.name),
     )

@@ -1,11 +1,13 @@
 """Measurement tables: from the grid of a sheet to columns of evidence, in steps that each have one module.
 
 - where: ``tables`` (header row, units row, data rows), ``cells`` (their columns, read once), ``facts`` (key–value
-  rows above a table), ``layout`` (the key under which a layout is known again)
+  rows above a table), ``layout`` (the key under which a layout is known again), ``located`` (a table with its mapping
+  and what is said above it)
 - what: ``header_text`` (a header taken apart), ``roles``, ``quantity_text``, ``unit_source`` (what its words say),
   ``meaning`` (the order of decisions) with ``column``, ``value_column``, ``condition_column``, ``constants`` and
   ``pairing``
-- said: ``stated`` (by the person, the mapping or the file, for all rows), ``mapping`` (TOML), ``proposal``, ``context``
+- said: ``stated`` (by the person, the mapping or the file, for all rows) with ``names`` and ``day``, ``mapping``
+  (TOML), ``proposal``, ``context`` (what the project knows)
 - read: ``selection`` (which rows), ``readings`` (numbers and intervals), ``words``, ``conditions``, ``uncertainty``,
   ``values``, ``pivot`` (one quantity at several conditions), ``rejects``, ``subject`` (block and items)
 - given back: ``evidence`` brings all together (``work`` holds it meanwhile), ``document``, ``result``

@@ -75,6 +75,7 @@ class Heading:
     header: HeaderCell
     parts: HeaderText
     hints: ColumnMapping
+    said_by: str = "the mapping"
 
     @property
     def letter(self) -> str:

@@ -51,14 +51,14 @@ def mapped_condition(heading: Heading, unit: FoundUnit) -> ColumnMeaning:
     named = heading.hints.dimension
     known = known_dimension(named) or find_dimension(named or heading.parts.name)
     if known is not None:
-        return condition_of(heading, known, unit, "the mapping")
+        return condition_of(heading, known, unit, heading.said_by)
     if not named:
         return heading.ask("the mapping names no dimension", 'write dimension = "..."')
     if unit.problem:
         return heading.ask_unit(unit.problem, "")
     numeric = bool(heading.table.cells(heading.header.column).numeric.any())
     return replace(
-        heading.means(Role.CONDITION, "the mapping"),
+        heading.means(Role.CONDITION, heading.said_by),
         dimension=named,
         unit=unit.unit,
         unit_from=unit.source,

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Mapping
 from typing import TypeVar
 
 import numpy as np
@@ -10,16 +10,16 @@ import numpy as np
 from specflow.importers.measured.conditions import merged_items, read_conditions
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.document import Identity, make_document
-from specflow.importers.measured.facts import Fact, read_preamble, states_something
-from specflow.importers.measured.mapping import LayoutMapping
+from specflow.importers.measured.facts import states_something
+from specflow.importers.measured.header_text import header_key
+from specflow.importers.measured.located import LocatedTable
 from specflow.importers.measured.meaning import read_meanings
 from specflow.importers.measured.pivot import stack
 from specflow.importers.measured.rejects import Rejects
 from specflow.importers.measured.result import ColumnReading, MeasuredTable, Role
 from specflow.importers.measured.selection import select_rows
-from specflow.importers.measured.stated import collect
+from specflow.importers.measured.stated import PERSON, Stated, collect
 from specflow.importers.measured.subject import find_block, item_name, item_notes
-from specflow.importers.measured.tables import FoundTable
 from specflow.importers.measured.values import column_name, read_values
 from specflow.importers.measured.words import fill_down, read_dates, read_words
 from specflow.importers.measured.work import TableWork
@@ -34,27 +34,21 @@ _KEPT = (Role.STATED_LIMIT, Role.STATED_VERDICT, Role.REQUIREMENT, Role.REMARK)
 _ON_AN_ITEM = (Method.TEST, Method.DEMONSTRATION, Method.INSPECTION)
 
 
-def read_table(
-    table: FoundTable,
-    key: str,
-    context: Context,
-    mapping: LayoutMapping,
-    mapping_from: str,
-    person: Mapping[str, str],
-    sheet_facts: Sequence[Fact] = (),
-) -> MeasuredTable:
-    """Read one table; it has no document while a question is open or when no row is left.
-
-    ``sheet_facts`` are said above an earlier table of the sheet and hold where this one says nothing else.
-    """
-    preamble = read_preamble(table.grid, table.top, table.header_row)
-    stated = collect(
-        preamble.facts,
-        mapping.stated,
+def collected(located: LocatedTable, context: Context, person: Mapping[str, str]) -> Stated:
+    """What is said for a table by the person, its mapping and the file."""
+    return collect(
+        located.preamble.facts,
+        located.mapping.stated,
         person,
-        sheet_facts=sheet_facts,
+        sheet_facts=located.sheet_facts,
         own_dimensions=context.dimensions,
     )
+
+
+def read_table(located: LocatedTable, context: Context, person: Mapping[str, str]) -> MeasuredTable:
+    """Read one table; it has no document while a question is open or when no row is left."""
+    table, mapping, key = located.table, located.mapping, located.key
+    stated = collected(located, context, person)
     sheet = "" if table.grid.name == table.grid.file else table.grid.name
     work = TableWork(table, context, mapping, stated, Rejects(sheet))
     work.notes += [remark.words for remark in table.stepped_over]
@@ -65,9 +59,10 @@ def read_table(
     given = {meaning.dimension for meaning in work.of(Role.CONDITION)}
     work.questions += [doubt for name, doubt in stated.doubts.items() if name not in given]
     _ask_about_columns(work)
+    _note_idle_entries(work)
     work.rows, notes = select_rows(table, work.meanings, mapping, work.rejects)
     work.notes += notes
-    title = mapping.title or preamble.title
+    title = mapping.title or located.preamble.title
     document, columns = _evidence(work, key, title, sheet)
     return MeasuredTable(
         sheet=sheet,
@@ -82,10 +77,28 @@ def read_table(
         rejected_cells=len(work.rejects.cells),
         blank=dict(work.rejects.blank),
         notes=(*work.notes, *(f"not used: {one}" for one in stated.unused)),
-        mapping_from=mapping_from,
+        mapping_from=located.mapping_from,
         document=document,
         columns=columns,
     )
+
+
+def _note_idle_entries(work: TableWork) -> None:
+    """Say which entries of the mapping, or of the person, speak of columns that are not there."""
+    headers = work.table.headers
+    letters = {column_letter(header.column) for header in headers} | set(
+        map(column_letter, work.table.unnamed)
+    )
+    keys = {header_key(header.text) for header in headers}
+    for entry in work.mapping.columns:
+        there = any(entry.is_about(header.text, column_letter(header.column)) for header in headers)
+        if not there and not (entry.column.upper() in letters and not entry.header):
+            work.notes.append(
+                f"the mapping speaks of a column {entry.header or entry.column!r} that is not there"
+            )
+    for key in work.stated.columns:
+        if key.upper() not in letters and header_key(key) not in keys:
+            work.notes.append(f"there is no column {key!r}, of which something was stated")
 
 
 def _count(columns: EvidenceColumns) -> int:
@@ -172,11 +185,15 @@ def _evidence(
 def _items(work: TableWork) -> TextColumn:
     columns = work.of(Role.ITEM)
     if columns:
+        if any(one.by == PERSON for one in work.stated.items):
+            work.notes.append("items are named row by row; the one that was stated was not used")
         words = read_words(work.table, columns[0].column, work.rows, work.rejects)
         words = merged_items(work.table, columns[0].column, work.rows, words, work.notes)
         return fill_down(words) if columns[0].fill_down else words
     item = item_name(work.stated.items, work.context)
     if item:
+        if item != work.stated.text("item"):
+            work.notes.append(f"the item is {item}, as the project knows it")
         return TextColumn(np.zeros(len(work.rows), np.int32), (item,))
     return TextColumn(np.full(len(work.rows), -1, np.int32), ())
 

@@ -45,6 +45,17 @@ def read_preamble(grid: Grid, top: int, header_row: int) -> Preamble:
     return Preamble(tuple(facts), title)
 
 
+def read_across(grid: Grid, key_row: int, value_row: int) -> tuple[Fact, ...]:
+    """Read a row of keys with their values in a row below."""
+    facts = []
+    for column, key in enumerate(grid.row(key_row), start=1):
+        value = grid.value(value_row, column)
+        if isinstance(key, str) and not is_blank(key) and not is_blank(value):
+            text = _value_text(grid, value_row, column, value, key)
+            facts.append(Fact(" ".join(key.split()).rstrip(":"), text, address(value_row, column)))
+    return tuple(facts)
+
+
 def states_something(text: str) -> bool:
     """Whether a line says a value of something: a key with a value, or a number with a unit."""
     pair = _PAIR.match(text)

@@ -28,7 +28,7 @@ from specflow.importers.measured.pairing import of_their_values, uncertainty_col
 from specflow.importers.measured.quantity_text import name_quantity
 from specflow.importers.measured.result import Role
 from specflow.importers.measured.roles import UncertaintyWords, role_of_words, uncertainty_of
-from specflow.importers.measured.stated import Stated
+from specflow.importers.measured.stated import PERSON, Stated
 from specflow.importers.measured.tables import FoundTable, HeaderCell
 from specflow.importers.measured.value_column import mapped_value, named_value
 from specflow.importers.readers import column_letter, looks_numeric
@@ -66,8 +66,10 @@ class _Reader:
         self._seen = Counter(header_key(header.text) for header in table.headers)
 
     def read(self, header: HeaderCell) -> ColumnMeaning:
-        mapped = self._said(header) or self._mapping.column(header.text, column_letter(header.column))
-        heading = Heading(self._table, header, read_header(header.text), mapped or ColumnMapping())
+        said = self._said(header)
+        mapped = said or self._mapping.column(header.text, column_letter(header.column))
+        by = PERSON if said else "the mapping"
+        heading = Heading(self._table, header, read_header(header.text), mapped or ColumnMapping(), by)
         if mapped is not None and (mapped.role or mapped.parameter or mapped.dimension):
             return self._as_mapped(heading)
         pivot = self._mapping.pivot
@@ -114,7 +116,7 @@ class _Reader:
         if role is Role.UNCERTAINTY:
             words = uncertainty_of(heading.parts) or UncertaintyWords("", False, False)
             return uncertainty_column(heading, words, unit)
-        return heading.means(role, "the mapping")
+        return heading.means(role, heading.said_by)
 
     def _by_words(self, heading: Heading) -> ColumnMeaning:
         parts = heading.parts

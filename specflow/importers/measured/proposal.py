@@ -3,14 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import replace
+from dataclasses import dataclass, replace
 
 from specflow.importers.measured.column import ColumnMeaning
 from specflow.importers.measured.layout import sheet_pattern
 from specflow.importers.measured.mapping import FORMAT, ColumnMapping, LayoutMapping, write_mapping
 from specflow.importers.measured.result import Role
 from specflow.importers.measured.tables import FoundTable
-from specflow.importers.readers import column_letter
 from specflow.model.evidence import SpectrumKind
 
 HEAD = f"""# A mapping of measurement tables: how the columns of each layout are to be read.
@@ -27,20 +26,33 @@ format = {FORMAT}
 """
 
 
-def propose(
-    tables: Sequence[tuple[FoundTable, str, LayoutMapping, Sequence[ColumnMeaning], str]],
-) -> str:
-    """Return the TOML for tables given as (table, layout key, mapping in use, meanings, title)."""
+@dataclass(frozen=True, slots=True)
+class Proposal:
+    """One table as it was understood."""
+
+    table: FoundTable
+    key: str
+    mapping: LayoutMapping
+    meanings: Sequence[ColumnMeaning]
+    title: str
+
+
+def propose(proposals: Sequence[Proposal]) -> str:
+    """Return the TOML for the tables of a file."""
     parts = [HEAD]
-    for table, key, mapping, meanings, title in tables:
-        columns = tuple(_entry(meaning, mapping) for meaning in meanings if meaning.role is not Role.PIVOT)
-        reasons = {
-            f"{column_letter(meaning.column)}:{meaning.header.text}": _reason(meaning) for meaning in meanings
-        }
-        proposed = replace(
-            mapping, layout=key, title=mapping.title or title, sheet=sheet_pattern(table), columns=columns
+    for one in proposals:
+        columns = tuple(
+            _entry(meaning, one.mapping) for meaning in one.meanings if meaning.role is not Role.PIVOT
         )
-        parts.append(write_mapping(proposed, reasons))
+        reasons = {f"{meaning.letter}:{meaning.header.text}": _reason(meaning) for meaning in one.meanings}
+        mapping = replace(
+            one.mapping,
+            layout=one.key,
+            title=one.mapping.title or one.title,
+            sheet=sheet_pattern(one.table),
+            columns=columns,
+        )
+        parts.append(write_mapping(mapping, reasons))
     return "\n".join(parts)
 
 
@@ -51,7 +63,7 @@ def _reason(meaning: ColumnMeaning) -> str:
 
 
 def _entry(meaning: ColumnMeaning, mapping: LayoutMapping) -> ColumnMapping:
-    letter = column_letter(meaning.column)
+    letter = meaning.letter
     used = mapping.column(meaning.header.text, letter)
     if used is not None:
         return used

@@ -7,6 +7,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field
 from datetime import date, datetime, time, timedelta
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -178,6 +179,7 @@ def _ends(
     return reading.lo, reading.hi
 
 
+@lru_cache(maxsize=8192)
 def _parsed(text: str, decimal_comma: bool | None) -> tuple[Reading | Blank, Unit | None]:
     try:
         return parse_reading(text, decimal_comma=decimal_comma), None

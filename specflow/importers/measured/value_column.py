@@ -38,8 +38,8 @@ def mapped_value(
     if parameter is None:
         near = ", ".join(one.key for one in context.dictionary.suggest(key))
         remedy = f"nearest: {near}" if near else "add it to the parameters of the project"
-        return heading.ask(f"the mapping names {key!r}, which is no known parameter", remedy)
-    return value_of(heading, parameter, NamedQuantity(), unit, context, stated, "the mapping")
+        return heading.ask(f"{key!r} ({heading.said_by}) is no known parameter", remedy)
+    return value_of(heading, parameter, NamedQuantity(), unit, context, stated, heading.said_by)
 
 
 def value_of(

@@ -143,6 +143,21 @@ def test_a_faulty_mapping_is_refused_with_its_place(toml: str, words: str) -> No
     assert words in caught.value.message and "m.toml" in caught.value.where and caught.value.hint
 
 
+def test_what_of_a_mapping_is_not_used_is_said(tmp_path: Path) -> None:
+    path = book(tmp_path / "a.xlsx", [["f (GHz)", "Gain (dB)"], [27.5, 20]])
+    mapping = 'format = 1\n[[table]]\n[[table.column]]\nheader = "Gian (dB)"\nrole = "not read"\n'
+    table = taken(one_table(path, mapping=mapping))
+    assert "the mapping speaks of a column 'Gian (dB)' that is not there" in table.notes
+    other = measure(
+        path, mapping='format = 1\n[[table]]\nlayout = "L-0"\nblock = "PA"\n', mapping_name="m.toml"
+    )
+    assert "m.toml settles the layout L-0, which no table of this file has" in other.findings[0].message
+    said = {"block": "LNA", "item": "LNA-1", "column Z": "gain"}
+    assert (
+        "there is no column 'Z', of which something was stated" in taken(one_table(path, stated=said)).notes
+    )
+
+
 def test_a_parameter_that_is_unknown_is_named_with_the_nearest(tmp_path: Path) -> None:
     mapping = 'format = 1\n[[table]]\n[[table.column]]\nheader = "G"\nparameter = "gian"\nunit = "dB"\n'
     asked = questions(one_table(book(tmp_path / "a.xlsx", [["f (GHz)", "G"], [27.5, 20]]), mapping=mapping))

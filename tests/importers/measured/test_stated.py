@@ -91,6 +91,14 @@ def test_the_item_is_the_one_that_the_project_knows(tmp_path: Path, rows: Any, i
     assert table.columns is not None and table.columns.items.word(0) == item
 
 
+def test_a_row_of_keys_over_a_row_of_values(tmp_path: Path) -> None:
+    rows = [["DUT", "Serial", "Date", "Ambient (°C)"], ["amplifier", "LNA-2", "2026-03-02", 23], [], *TABLE]
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows), stated={}))
+    assert table.columns is not None and table.document is not None
+    assert (table.columns.items.word(0), str(table.document.performed_on)) == ("LNA-2", "2026-03-02")
+    assert table.columns.conditions.numeric["temperature_ambient"][0] == 23
+
+
 def test_a_range_of_frequencies_above_a_table_with_a_frequency_column_is_no_question(tmp_path: Path) -> None:
     assert taken(above(tmp_path, ["Frequency: 27.5 - 30 GHz"]))
     rows = [["Frequency: 27.5 - 30 GHz"], ["Vdd (V)", "Gain (dB)"], [5, 20]]
