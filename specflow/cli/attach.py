@@ -155,7 +155,7 @@ class _Run:
                 step(file.name)
                 preview = preview_attach(self._store, file, self._options)
             self._show(preview)
-            return ExitCode.CLEAN if self._dry_run and not preview.unresolved else self._accept(preview)
+            return self._accept(preview)
         except SpecflowError as error:
             show_error(error)
             if self._as_json:

@@ -14,9 +14,9 @@ from specflow.limits.tree import undefined_in
 from specflow.model.base import code_key
 from specflow.model.conditions import ConditionsSet
 from specflow.model.decision import Nonconformance, Waiver
-from specflow.model.evidence import EvidenceColumns, EvidenceFile, EvidenceTable
+from specflow.model.evidence import SOURCE_COLUMN, EvidenceColumns, EvidenceFile, EvidenceTable
 from specflow.model.limit import LimitState
-from specflow.model.origin import Origin
+from specflow.model.origin import Origin, column_number
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Results, Snapshot
 from specflow.model.verdict import (
@@ -159,8 +159,11 @@ class Facts:
         table = self.table(record.table) if record is not None else None
         if record is None or table is None:
             return None
+        columns = self.columns(record.table)
         column = next((one.column for one in table.values if one.name == record.column), None)
-        row = int(self.columns(record.table).source_rows[record.row])
+        row = int(columns.source_rows[record.row])
+        if SOURCE_COLUMN in columns.extra:  # values of several columns were stacked
+            column = column_number(columns.extra[SOURCE_COLUMN].word(record.row))
         return self.place(table).model_copy(update={"row": row, "column": column})
 
     def place(self, table: EvidenceTable) -> Origin:

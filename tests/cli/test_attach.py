@@ -50,6 +50,10 @@ def test_a_dry_run_stores_nothing_and_says_what_would_keep_it_out(
     unclear = book(tmp_path / "b.xlsx", [["Item", "f", "Gain (dB)"], ["LNA-1", 27.5, 20]])
     done = command("attach", unclear, "--dry-run")
     assert done.code == ExitCode.BAD_INPUT and "without a unit" in done.out and "do:" in done.err
+    rejected = book(tmp_path / "c.xlsx", [*ROWS, ["LNA-1", 31, "abc"]])
+    done = command("attach", rejected, "--dry-run")
+    assert done.code == ExitCode.BAD_INPUT and "--take-rest" in done.err
+    assert command("attach", rejected, "--dry-run", "--take-rest").code == ExitCode.CLEAN
     assert tables(project) == []
 
 

@@ -12,6 +12,8 @@ import pytest
 from specflow.errors import ConflictError, DocumentError, FileError
 from specflow.model.evidence import EvidenceFile, EvidenceTable, Supersession, TableMapping
 from specflow.model.project import Policy
+from specflow.model.verdict import RecordRef
+from specflow.reports.origins import OriginFinder
 from specflow.store import ProjectStore, create_project
 from specflow.workflows.attach import (
     Attached,
@@ -202,6 +204,22 @@ def test_a_mapping_is_kept_and_its_revision_grows(store: ProjectStore, tmp_path:
     assert (
         preview_attach(store, path, AttachOptions(mapping=mapping)).known == {}
     )  # another mapping, another table
+
+
+def test_a_stacked_value_is_traced_to_its_own_cell(store: ProjectStore, tmp_path: Path) -> None:
+    path = book(
+        tmp_path / "wide.xlsx", [["Item", "Gain @ 27.5 GHz (dB)", "Gain @ 30 GHz (dB)"], ["LNA-1", 20, 21]]
+    )
+    mapping = tmp_path / "m.toml"
+    mapping.write_text(
+        'format = 1\n[[table]]\n[table.pivot]\nheader = "Gain @ {frequency} GHz (dB)"\nparameter = "gain"\n'
+        'unit = "dB"\nunits = { frequency = "GHz" }\n',
+        encoding="utf-8",
+    )
+    attached(store, path, mapping=mapping)
+    finder = OriginFinder(store.load())
+    places = [finder.origin(RecordRef("EV-1", "gain", row)) for row in (0, 1)]
+    assert [place.cell for place in places if place] == ["B2", "C2"]
 
 
 def test_a_mapping_that_is_not_there_is_named(store: ProjectStore, tmp_path: Path) -> None:
