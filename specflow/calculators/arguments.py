@@ -31,7 +31,9 @@ def at_least(value: Figures, least: float, name: str, *, hint: str = "") -> Floa
     """Return finite ``value``; anything below ``least`` is refused."""
     array = finite(value, name)
     if (array < least).any():
-        raise CalculationError(f"{_which(array, array < least, name)}, below {least:g}", hint=hint)
+        raise CalculationError(
+            f"{_which(array, array < least, name)}, below {least:g}", hint=hint or f"give at least {least:g}"
+        )
     return array
 
 

@@ -103,7 +103,8 @@ def cascade_slopes(
         part = slice(start, min(start + BLOCK, points))
         block = [row if row.shape[1] == 1 else row[:, part] for row in rows]
         _slopes_of_block(out[:, :, part], block, power, work[:, : part.stop - part.start])
-    if not np.isfinite(out).all() or rows[1].min(initial=np.inf) < 0.0:
+    last_gain = rows[0][-1]  # the one figure that no slope depends on
+    if not (np.isfinite(out).all() and np.isfinite(last_gain).all()) or rows[1].min(initial=np.inf) < 0.0:
         _refuse(gain_db, nf_db, iip3_dbm, ip1db_dbm)
     table = out.reshape(6, positions, *shape)
     return CascadeSlopes(Slopes(table[0], table[1]), Slopes(table[2], table[3]), Slopes(table[4], table[5]))
