@@ -18,6 +18,7 @@ from typing import NoReturn
 from specflow.errors import ExpressionError
 from specflow.limits.at_grammar import joined_cases, read_at
 from specflow.limits.bound_grammar import directed, read_bound
+from specflow.limits.conversion import conversion
 from specflow.limits.draft import Bare, Draft, Typical
 from specflow.limits.expression_grammar import read_condition
 from specflow.limits.expression_shape import is_condition
@@ -108,6 +109,8 @@ def _refuse_rest(draft: Draft, tree: LimitNode | None) -> NoReturn:
         if ranged is not None and tree is not None and (unit := canonical_unit(ranged[3])):
             table = f"by frequency[{unit}] ({ranged[1]}..{ranged[2]}: {node_text(tree)})"
             hint += f"; or, if it is the frequency: '{table}'"
+    if tree is not None and _may_be_of(tree, draft.hint):
+        hint = f"{hint}{'; ' * bool(hint)}what stands before it would be '{node_text(tree)}'"
     reader.fail(f"nothing can be made of {reader.rest!r}", hint=hint)
 
 
@@ -121,6 +124,13 @@ def _finished(text: str, draft: Draft, tree: LimitNode) -> Limit:
         rounding=draft.rounding,
         test_tolerance=draft.test_tolerance,
         readings=tuple(draft.readings),
+    )
+
+
+def _may_be_of(tree: LimitNode, unit: str) -> bool:
+    """Tell whether a limit may be one of a quantity in this unit."""
+    return (
+        not unit or any(conversion(own, unit) is not None for own in tree_units(tree)) or not tree_units(tree)
     )
 
 

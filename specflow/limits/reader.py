@@ -53,6 +53,8 @@ RESERVED = frozenset(_GRAMMAR_WORDS.split())
 _REMARKS = frozenset({"typ", "typical", "typically", "nom", "nominal"})
 #: What is often written without a blank behind a unit: 20dBmin, 28VDC.
 _SUFFIXES = ("minimum", "maximum", "min", "max", "typ")
+#: "25 log θ"; in a mask "-20 log in 10 MHz" says how a segment runs.
+_BARE_LOGARITHM = re.compile(r"(?:log10|log|lg|ln)(?!\w) *(?!in\b)(?=\w)", re.IGNORECASE)
 _DIRECT_CURRENT = re.compile(r"(?:DC|dc|d\.c\.)(?!\w)")
 _SUPERSCRIPTS = str.maketrans("⁰¹²³⁴⁵⁶⁷⁸⁹⁺⁻−", "0123456789+--")
 #: Read from the text as typed: a factor written with * is arithmetic.
@@ -66,6 +68,7 @@ FUNCTION_NAMES = (*FUNCTIONS, "log")
 
 _BLANKS = re.compile(r" *")
 _NUMBER = re.compile(r"(?:\d+(?:\.(?!\.)\d*)?|\.\d+)(?:[eE][+-]?\d+)?")
+_THOUSANDS_OF_BLANKS = re.compile(r"\d{1,3}(?: \d{3})+(?:\.\d+)?(?![\d.,])")
 _THOUSANDS = re.compile(r"\d{1,3}(?:,\d{3})+\.\d+")
 _THOUSANDS_OF_POINTS = re.compile(r"\d{1,3}(?:\.\d{3})+,\d+(?!\d)")
 _COMMA = re.compile(r"\d+,\d+")
@@ -216,6 +219,9 @@ class Reader:
         for pattern in _POWERS_OF_TEN:
             if (power := pattern.match(self.original, start)) is not None:
                 return self._power_of_ten(power)
+        spaced = None if self.calls else self.take_pattern(_THOUSANDS_OF_BLANKS)
+        if spaced is not None:
+            return spaced.replace(" ", "")
         thousands = self.take_pattern(_THOUSANDS)
         if thousands is not None:
             return thousands.replace(",", "")
@@ -304,6 +310,11 @@ class Reader:
 
     def refuse_unknown_unit(self) -> None:
         """Fail when a word that is no unit and no part of the grammar follows a number."""
+        if _BARE_LOGARITHM.match(self.text, self.place) is not None:
+            self.fail(
+                "a logarithm needs its argument in parentheses",
+                hint="write it as in '(29 - 25 * log10(theta)) dBi max'; log10 is to base 10, ln to base e",
+            )
         name = _NAME.match(self.text, self.place)
         if name is None or name.group().lower() in RESERVED | _REMARKS or self.sees_call():
             return

@@ -8,6 +8,7 @@ from specflow.errors import UnitError
 from specflow.importers.sheets.decision_rules import decision_rule, provers, stated_tolerance
 from specflow.importers.sheets.intake import Intake
 from specflow.importers.sheets.limit_cells import check_inputs, limit_cell
+from specflow.importers.sheets.limit_doubts import note_doubts
 from specflow.importers.sheets.parameters import known_parameter
 from specflow.importers.sheets.plans import note_plan, stated_plan
 from specflow.importers.sheets.requirement_columns import LAYOUT
@@ -69,6 +70,7 @@ def _requirement(row: SheetRow, intake: Intake) -> Requirement | None:
     if limit is None or quantity is None:
         return None
     check_inputs(row, intake, limit, conditions)
+    note_doubts(row, intake, _limit_column(row), limit, parameter, conditions)
     return row.build(
         Requirement,
         id=row.subject,
