@@ -14,7 +14,7 @@ class PointState(StrEnum):
     """What is known of one required point, as the proof grid shows it."""
 
     PROVED = "proved"
-    DOUBTFUL = "doubtful"
+    UNDECIDED = "undecided"
     FAILING = "failing"
     MISSING = "missing"
 

@@ -7,7 +7,7 @@ from collections.abc import Sequence
 from specflow.conditions import set_words
 from specflow.limits import limit_words
 from specflow.model.base import code_key
-from specflow.model.card import Card
+from specflow.model.card import Card, PointState
 from specflow.model.conditions import ConditionsSet
 from specflow.model.finding import Finding
 from specflow.model.requirement import Requirement
@@ -56,10 +56,16 @@ def requirement_card(
 
 
 def proved_words(status: RequirementStatus) -> str:
-    """Return how far a requirement is proved: failing and missing points are counted apart."""
+    """Return how far a requirement is proved: failing, missing and undecided points are counted apart."""
     if status.n == 0:
         return "no required points"
-    return f"{share(status.k, status.n)} proved, {status.n_failing} failing, {status.n_missing} missing"
+    counts = (
+        (status.n_failing, "failing"),
+        (status.n_without_evidence, PointState.MISSING.value),
+        (status.n_undecided, PointState.UNDECIDED.value),
+    )
+    said = [f"{count} {word}" for count, word in counts if count]
+    return ", ".join([f"{share(status.k, status.n)} proved", *said])
 
 
 def findings_about(findings: Sequence[Finding], code: str) -> tuple[Finding, ...]:

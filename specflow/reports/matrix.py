@@ -39,8 +39,9 @@ MATRIX_COLUMNS = (
     ReportColumn(key="verification", title="Verification", width=34, explains="method, stage, tier"),
     ReportColumn(key="proved", title="Points proved", align=Align.RIGHT, width=13),
     ReportColumn(key="failing", title="Failing", align=Align.RIGHT, width=9),
+    ReportColumn(key="missing", title="Without evidence", align=Align.RIGHT, width=10),
     ReportColumn(
-        key="missing", title="Missing", align=Align.RIGHT, width=9, explains="no evidence that counts"
+        key="undecided", title="Undecided", align=Align.RIGHT, width=10, explains="evidence proves nothing"
     ),
     ReportColumn(key="verdict", title="Worst verdict", width=16),
     ReportColumn(key="value", title="Governing value", align=Align.RIGHT, width=14, explains="as recorded"),
@@ -161,7 +162,8 @@ def _what_is_shown(status: RequirementStatus, finder: OriginFinder) -> tuple[Rep
     return (
         ReportCell(text=share(status.k, status.n), number=float(status.k)),
         _count(status.n_failing, CellTone.BAD),
-        _count(status.n_missing, CellTone.DOUBTFUL),
+        _count(status.n_without_evidence, CellTone.DOUBTFUL),
+        _count(status.n_undecided, CellTone.DOUBTFUL),
         text(status.verdict.words, verdict_tone(status.verdict)),
         finder.recorded(governing.record) if governing else text(""),
         margin(governing.margin, governing.unit) if governing else text(""),

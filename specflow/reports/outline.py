@@ -10,8 +10,8 @@ from specflow.model.block import Block
 from specflow.model.outline import Outline, OutlineEntry
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Results, Snapshot
-from specflow.model.verdict import CloseOut, Label
-from specflow.reports.figures import label_tone
+from specflow.model.verdict import CloseOut, Compliance, Label
+from specflow.reports.figures import label_tone, share
 from specflow.reports.status import in_tree_order
 
 # One short word for each label, so that a state is told without colour in a line of 30 characters.
@@ -46,6 +46,18 @@ def outlines(snapshot: Snapshot, results: Results) -> tuple[Outline, ...]:
         by_block(snapshot, results),
         by_source(snapshot, results),
     )
+
+
+def headline(results: Results, requirements: Sequence[Requirement]) -> str:
+    """Return the total of points in a line; ``status.points_sentence`` says it with every denominator."""
+    counted = [
+        status
+        for status in (results.of(requirement.id) for requirement in requirements)
+        if status.compliance is not Compliance.NOT_APPLICABLE
+    ]
+    k, n = sum(status.k for status in counted), sum(status.n for status in counted)
+    failing = sum(status.n_failing for status in counted)
+    return f"{share(k, n)} points proved, {failing} failing"
 
 
 def by_requirement(snapshot: Snapshot, results: Results) -> Outline:

@@ -22,7 +22,7 @@ from specflow.reports.points import points_of, record_at, shown_items, words_of
 MOST_CELLS = 3000  # more cannot be looked at; an export has them all
 SPARSE = 3  # a table of rows and columns of which most cells are empty says less than a list
 
-STATES = (PointState.FAILING, PointState.MISSING, PointState.DOUBTFUL, PointState.PROVED)
+STATES = (PointState.FAILING, PointState.MISSING, PointState.UNDECIDED, PointState.PROVED)
 FAILING = (Verdict.FAIL, Verdict.CONDITIONAL_FAIL)
 
 
@@ -42,7 +42,7 @@ class Sheet:
         """Return the state of every point, as codes into STATES."""
         if self.found is None:
             return np.full(self.count, STATES.index(PointState.MISSING), np.int8)
-        states = np.full(self.count, STATES.index(PointState.DOUBTFUL), np.int8)
+        states = np.full(self.count, STATES.index(PointState.UNDECIDED), np.int8)
         states[(self.found.table < 0) | (self.found.verdict == Verdict.NONE)] = STATES.index(
             PointState.MISSING
         )
@@ -54,7 +54,9 @@ class Sheet:
         """Return one point as a cell."""
         found = self.found
         words = words_of(self.points, place)
-        lacks = self.lacking.words(place, found) if state in (PointState.MISSING, PointState.DOUBTFUL) else ""
+        lacks = (
+            self.lacking.words(place, found) if state in (PointState.MISSING, PointState.UNDECIDED) else ""
+        )
         if found is None:
             return ProofCell(words=words, state=state, verdict="no evidence", lacks=lacks)
         record = record_at(found, place, self.finder)
@@ -77,7 +79,7 @@ def verdict_words(verdict: Verdict, state: PointState) -> str:
     """Say a verdict; one that passes and does not prove its point says so."""
     if verdict is Verdict.NONE:
         return "no evidence"
-    unproved = state is PointState.DOUBTFUL and verdict <= Verdict.CONDITIONAL_PASS
+    unproved = state is PointState.UNDECIDED and verdict <= Verdict.CONDITIONAL_PASS
     return f"{verdict.words}, but not proved" if unproved else verdict.words
 
 

@@ -21,7 +21,7 @@ from specflow.reports.figures import interval, label_tone, margin, share, verdic
 from specflow.reports.lacking import Lacking
 from specflow.reports.origins import OriginFinder
 from specflow.reports.points import points_of, record_at, shown_items, words_of
-from specflow.reports.serving import Served
+from specflow.reports.serving import Served, governed_points
 
 MOST_POINTS = 400  # a trail is read by people; the points table of an export has them all
 
@@ -126,7 +126,21 @@ def _evidence(
                 yield TrailStep(
                     depth=2, kind="point", text=f"... and {len(places) - len(listed)} more points"
                 )
+    yield from _files(status, snapshot)
     yield from _not_counted(status)
+
+
+def _files(status: RequirementStatus, snapshot: Snapshot) -> Iterator[TrailStep]:
+    """Give the files that governing records stand in, with the hash that says which bytes they were."""
+    found = [results for activity in status.activities for results in activity.items.values()]
+    named = dict.fromkeys(table for results in found for table in governed_points(results))
+    files: dict[str, TrailStep] = {}
+    for name in named:
+        table = snapshot.find(EvidenceTable, name)
+        if table is not None:
+            step = _file_step(table, snapshot)
+            files.setdefault(table.file, step.model_copy(update={"depth": 1, "origin": None}))
+    yield from files.values()
 
 
 def deciding(found: PointResults | None, places: Sequence[int], most: int) -> Sequence[int]:

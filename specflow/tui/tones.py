@@ -16,12 +16,12 @@ STYLES = {
 POINT_MARKS = {
     PointState.PROVED: "■",
     PointState.FAILING: "×",
-    PointState.DOUBTFUL: "~",
+    PointState.UNDECIDED: "~",
     PointState.MISSING: "·",
 }
 POINT_STYLES = {
     PointState.PROVED: "$success",
     PointState.FAILING: "bold $error",
-    PointState.DOUBTFUL: "$warning",
+    PointState.UNDECIDED: "$warning",
     PointState.MISSING: "$secondary",
 }

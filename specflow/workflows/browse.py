@@ -11,7 +11,7 @@ from specflow.model.outline import Outline
 from specflow.model.requirement import Requirement
 from specflow.reports.about import cautions
 from specflow.reports.card import requirement_card
-from specflow.reports.outline import outlines
+from specflow.reports.outline import headline, outlines
 from specflow.reports.status import points_sentence
 from specflow.store import ProjectStore
 from specflow.workflows.evaluate_project import Evaluation, evaluate_project
@@ -25,6 +25,7 @@ class BrowseData:
     project: str
     revision: int
     as_of: str
+    headline: str
     totals: str
     outlines: Sequence[Outline]
     cautions: Sequence[str]
@@ -61,6 +62,7 @@ def browse_data(evaluation: Evaluation) -> BrowseData:
         project=snapshot.project.name,
         revision=snapshot.revision,
         as_of=results.as_of,
+        headline=headline(results, snapshot.requirements),
         totals=points_sentence(results, snapshot.requirements),
         outlines=outlines(snapshot, results),
         cautions=cautions(snapshot, evaluation.dictionary),

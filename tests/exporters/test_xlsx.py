@@ -100,7 +100,7 @@ def test_ids_lead_to_the_points_and_back() -> None:
 def test_headers_stay_in_view_and_rows_can_be_filtered() -> None:
     sheet = load_workbook(io.BytesIO(CONTENT))["Compliance matrix"]
     assert sheet.freeze_panes == "B5"
-    assert sheet.auto_filter.ref == f"A4:AA{4 + len(REPORT.tables[0].rows)}"
+    assert sheet.auto_filter.ref == f"A4:AB{4 + len(REPORT.tables[0].rows)}"
     assert sheet["A4"].value == "Requirement" and sheet["A6"].alignment.indent == 1
 
 

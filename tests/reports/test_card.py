@@ -113,7 +113,7 @@ def test_an_open_point_says_how_far_the_nearest_record_of_its_item_is() -> None:
 
 def test_a_range_with_a_gap_says_which() -> None:
     cell = card("LNA-1").grids[0].cells[0][0]
-    assert cell is not None and cell.state is PointState.DOUBTFUL
+    assert cell is not None and cell.state is PointState.UNDECIDED
     assert cell.verdict == "pass, but not proved"
     assert cell.lacks == "no evidence from 18.2 to 19.7 GHz (largest gap allowed: 0.5 GHz)"
 

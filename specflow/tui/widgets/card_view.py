@@ -13,7 +13,6 @@ from textual.widget import Widget
 from textual.widgets import Static
 
 from specflow.model.card import Card
-from specflow.tui.tones import STYLES
 from specflow.tui.widgets.facts import Facts
 from specflow.tui.widgets.findings import FindingsView
 from specflow.tui.widgets.margin_bar import MarginBarView
@@ -29,10 +28,13 @@ class CardView(VerticalScroll):
     DEFAULT_CSS = """
     CardView {
         border: round $surface-lighten-2; padding: 0 1; border-title-color: $primary; background: $background;
-        border-subtitle-color: $text-muted; scrollbar-size-vertical: 1;
+        scrollbar-size-vertical: 1;
     }
     CardView:focus { border: round $primary; }
     CardView:focus-within { border: round $primary; }
+    CardView.tone-good { border-title-color: $success; }
+    CardView.tone-doubtful { border-title-color: $warning; }
+    CardView.tone-bad { border-title-color: $error; border-title-style: bold; }
     CardView > .title { text-style: bold; }
     CardView > .text { height: auto; }
     CardView > .caution { border-left: thick $warning; padding-left: 1; margin-top: 1; height: auto; }
@@ -54,15 +56,15 @@ class CardView(VerticalScroll):
         again = self.card is not None and self.card.id == card.id
         self._place = round(self.scroll_offset.y) if again else 0
         self.card = card
-        self.border_title = card.id
-        self.border_subtitle = card.label
+        self.border_title = f"{card.id} · {card.label}"
+        self.set_classes(f"tone-{card.tone.value or 'plain'}")
         self.refresh(recompose=True)
 
     def show_words(self, words: str) -> None:
         """Show a sentence where there is no card."""
         self.card = None
         self._words = words
-        self.border_title = self.border_subtitle = ""
+        self.border_title = ""
         self.refresh(recompose=True)
 
     def compose(self) -> ComposeResult:
@@ -89,10 +91,7 @@ class CardView(VerticalScroll):
 
 def _parts(card: Card) -> Iterator[Widget]:
     yield Static(Content(card.title), classes="title")
-    yield Static(
-        Content.assemble((card.label, STYLES[card.tone]), (f"   limit: {card.limit_words}", "")),
-        classes="text",
-    )
+    yield Static(Content(card.limit_words), classes="text")
     yield ProvedLine(card.k, card.n, card.proved)
     if card.bar is not None:
         yield Rule("margin bar")

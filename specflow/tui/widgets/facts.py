@@ -17,21 +17,21 @@ class Facts(Widget):
     Facts { height: auto; }
     """
 
-    def __init__(self, facts: Sequence[tuple[str, str]]) -> None:
+    def __init__(self, facts: Sequence[tuple[str, str]], name_width: int = 0) -> None:
         super().__init__()
         self.facts = facts
+        self.name_width = name_width or max((len(name) for name, _ in facts), default=0) + 2
 
     def get_content_height(self, container: Size, viewport: Size, width: int) -> int:
         """Return the lines of all values as folded."""
-        return len(fact_lines(self.facts, width))
+        return len(fact_lines(self.facts, self.name_width, width))
 
     def render(self) -> RenderResult:
-        return Content("\n").join(fact_lines(self.facts, self.size.width))
+        return Content("\n").join(fact_lines(self.facts, self.name_width, self.size.width))
 
 
-def fact_lines(facts: Sequence[tuple[str, str]], width: int) -> list[Content]:
+def fact_lines(facts: Sequence[tuple[str, str]], name_width: int, width: int) -> list[Content]:
     """Set the pairs in ``width`` cells."""
-    name_width = max((len(name) for name, _ in facts), default=0) + 2
     lines: list[Content] = []
     for name, value in facts:
         folded = Content(value).wrap(max(width - name_width, 10)) or [Content("")]

@@ -23,7 +23,7 @@ class Heading(Widget):
     def show(self, data: BrowseData) -> None:
         """Show the totals of a project."""
         revision = f"revision {data.revision}"
-        self._parts = (data.project, data.totals.partition(" (")[0], f"as of {data.as_of}", revision)
+        self._parts = (data.project, data.headline, f"as of {data.as_of}", revision)
         self.refresh()
 
     def render(self) -> RenderResult:

@@ -109,7 +109,7 @@ class ProofGridView(Widget, can_focus=True):
 
     def _first_open(self) -> Place | None:
         """Return the worst of the open points: a failing one before one that is missing."""
-        order = [PointState.FAILING, PointState.MISSING, PointState.DOUBTFUL]
+        order = [PointState.FAILING, PointState.MISSING, PointState.UNDECIDED]
         places = self._open_places()
         return min(places, key=lambda place: order.index(self._state(place)), default=None)
 
