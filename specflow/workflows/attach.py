@@ -134,7 +134,7 @@ def preview_attach(
         place: found
         for place, table in enumerate(measurements.tables)
         if table.document and table.columns and place not in known
-        if (found := replaced_rows(snapshot, table.document, table.columns))
+        if (found := replaced_rows(snapshot, table.document, table.columns, measurements.file.sha256))
     }
     return AttachPreview(
         path, measurements, snapshot, known, replacements, _mapping_documents(snapshot, measurements, path)

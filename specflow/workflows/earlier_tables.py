@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
 
 from specflow.model.base import code_key
-from specflow.model.evidence import EvidenceColumns, EvidenceTable, Supersession, Withdrawal
+from specflow.model.evidence import EvidenceColumns, EvidenceFile, EvidenceTable, Supersession, Withdrawal
 from specflow.model.snapshot import Snapshot
 
 RowKey = tuple[object, ...]
@@ -25,34 +26,62 @@ class Replacement:
     def words(self) -> str:
         """Say it: "12 rows are those of EV-3, 3 with other values"."""
         values = f"{self.differing} with other values" if self.differing else "all with the same values"
-        return f"{len(self.rows)} rows are those of {self.earlier}, {values}"
+        rows = "1 row is that" if len(self.rows) == 1 else f"{len(self.rows)} rows are those"
+        return f"{rows} of {self.earlier}, {values}"
 
 
-def replaced_rows(snapshot: Snapshot, table: EvidenceTable, columns: EvidenceColumns) -> list[Replacement]:
-    """Compare a new table with the earlier ones of its key, but for those replaced or withdrawn as a whole."""
+def replaced_rows(
+    snapshot: Snapshot, table: EvidenceTable, columns: EvidenceColumns, sha256: str
+) -> list[Replacement]:
+    """Compare a new table with the earlier ones of its key, and with those read from the same cells of the same file.
+
+    The second are tables that another mapping gave. Tables replaced or withdrawn as a whole are left out.
+    """
     gone = {code_key(one.earlier) for one in snapshot.all(Supersession) if one.rows is None}
     gone |= {code_key(one.table) for one in snapshot.all(Withdrawal) if one.rows is None}
-    earlier = [
-        one for one in snapshot.tables if one.table_key == table.table_key and code_key(one.id) not in gone
+    files = {code_key(file.id) for file in snapshot.all(EvidenceFile) if file.sha256 == sha256}
+    standing = [one for one in snapshot.tables if code_key(one.id) not in gone]
+    again = [one for one in standing if one.table_key and one.table_key == table.table_key]
+    cells = [
+        one
+        for one in standing
+        if code_key(one.file) in files and one.sheet == table.sheet and one.table_key != table.table_key
     ]
-    if not earlier or not table.table_key:
-        return []
-    mine = _rows(table, columns)
-    arrays = snapshot.load_columns([one.id for one in earlier])
+    arrays = snapshot.load_columns([one.id for one in (*again, *cells)]) if again or cells else {}
+    mine = _rows(table, columns) if again else {}
     found = []
-    for one in earlier:
-        past = {
-            row for step in snapshot.all(Supersession) if step.earlier == one.id for row in step.rows or ()
-        }
-        same = [
+    for one in again:
+        pairs = [
             (row, values != mine[key][1])
             for key, (row, values) in _rows(one, arrays[one.id]).items()
-            if key in mine and row not in past
+            if key in mine
         ]
-        if same:
-            rows = tuple(sorted(row for row, _ in same))
-            found.append(Replacement(one.id, one.rows, rows, sum(differs for _, differs in same)))
-    return found
+        same_file = code_key(one.file) in files
+        found.append(
+            _replacement(snapshot, one, pairs or (_same_cells(one, columns, arrays) if same_file else []))
+        )
+    found += [_replacement(snapshot, one, _same_cells(one, columns, arrays)) for one in cells]
+    return [one for one in found if one.rows]
+
+
+def _same_cells(
+    earlier: EvidenceTable, columns: EvidenceColumns, arrays: Mapping[str, EvidenceColumns]
+) -> list[tuple[int, bool]]:
+    """Rows of an earlier table that stand in the rows of the sheet which the new one reads, too."""
+    shared = np.isin(arrays[earlier.id].source_rows, columns.source_rows)
+    return [(row, True) for row in np.flatnonzero(shared).tolist()]
+
+
+def _replacement(
+    snapshot: Snapshot, earlier: EvidenceTable, pairs: Sequence[tuple[int, bool]]
+) -> Replacement:
+    """Leave out the rows that are replaced already."""
+    past = {
+        row for step in snapshot.all(Supersession) if step.earlier == earlier.id for row in step.rows or ()
+    }
+    left = [(row, differs) for row, differs in pairs if row not in past]
+    rows = tuple(sorted(row for row, _ in left))
+    return Replacement(earlier.id, earlier.rows, rows, sum(differs for _, differs in left))
 
 
 def _rows(table: EvidenceTable, columns: EvidenceColumns) -> dict[RowKey, tuple[int, tuple[object, ...]]]:

@@ -124,7 +124,7 @@ def test_superseding(command: Command, project: Path, tmp_path: Path) -> None:
     command("attach", book(tmp_path / "gain.xlsx", ROWS), "--yes")
     path = book(tmp_path / "retest.xlsx", [HEADER, ["LNA-1", 27.5, 21]])
     done = command("attach", path, "--yes")
-    assert done.code == ExitCode.BAD_INPUT and "1 rows are those of EV-1, 1 with other values" in done.err
+    assert done.code == ExitCode.BAD_INPUT and "1 row is that of EV-1, 1 with other values" in done.err
     assert "--supersedes EV-1 replaces them, --beside lets both stand" in done.err
     assert command("attach", path, "--yes", "--supersedes", "EV-1").code == ExitCode.CLEAN
     assert tables(project) == ["EV-1", "EV-2"]

@@ -201,9 +201,27 @@ def test_a_mapping_is_kept_and_its_revision_grows(store: ProjectStore, tmp_path:
     attached(store, book(tmp_path / "third.xlsx", [["Item", "f", "G"], ["LNA-2", 28, 20]]), mapping=mapping)
     [kept] = store.load().all(TableMapping)
     assert (kept.revision, store.load().tables[2].mapping_revision) == (2, 2)
-    assert (
-        preview_attach(store, path, AttachOptions(mapping=mapping)).known == {}
-    )  # another mapping, another table
+
+
+def test_another_mapping_of_the_same_cells_replaces_what_the_first_one_gave(
+    store: ProjectStore, tmp_path: Path
+) -> None:
+    path = book(tmp_path / "gain.xlsx", [["Item", "f (GHz)", "G"], ["LNA-1", 27.5, 20], ["LNA-1", 28, 21]])
+    mapping = tmp_path / "m.toml"
+    toml = 'format = 1\n[[table]]\n[[table.column]]\nheader = "G"\nparameter = "isolation"\nunit = "dB"\n'
+    mapping.write_text(toml, encoding="utf-8")
+    attached(store, path, mapping=mapping)
+    mapping.write_text(toml.replace("isolation", "gain"), encoding="utf-8")
+    preview = preview_attach(store, path, AttachOptions(mapping=mapping))
+    assert not preview.known  # another mapping, another table
+    assert [one.words() for one in preview.replacements[0]] == [
+        "2 rows are those of EV-1, 2 with other values"
+    ]
+    with pytest.raises(DocumentError, match="it was not said which holds"):
+        accept_attach(store, preview, ME)
+    accept_attach(store, preview, Decision("A. B.", supersedes=["EV-1"]))
+    assert [(step.earlier, step.rows) for step in store.load().all(Supersession)] == [("EV-1", None)]
+    assert len(store.load().all(EvidenceFile)) == 1
 
 
 def test_a_stacked_value_is_traced_to_its_own_cell(store: ProjectStore, tmp_path: Path) -> None:
