@@ -299,6 +299,7 @@ def _read_after_number(reader: Reader, text: str) -> Expression:
     number = Number(text=text, unit=unit or "")
     if not number.unit or reader.take_words("of") is None:
         return number
+    reader.take_words("the")
     name = reader.take_name()
     if name is None:
         reader.fail("'of' needs the name of what the share is taken of", hint="0.05 ppm of carrier")

@@ -26,8 +26,13 @@ _SEPARATOR = re.compile(r"[,;/](?! *whichever)", re.IGNORECASE)
 
 
 def take_joint(draft: Draft, before: LimitNode | Bare | Typical) -> str | None:
-    """Take 'or' or 'and'; a comma (outside brackets a semicolon too) before another bound means 'and'."""
+    """Take 'or' or 'and'; a comma (outside brackets a semicolon too) before another bound means 'and'.
+
+    Behind a value without a direction a comma joins nothing: in "45 dBm, 50 dBm max" the first may be the nominal.
+    """
     reader = draft.reader
+    if isinstance(before, Bare):
+        return reader.take_words("or", "and")
     if draft.inner and reader.sees(";"):
         return None
     if _NEXT_BOUND.match(reader.text, reader.place):

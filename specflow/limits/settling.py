@@ -179,15 +179,16 @@ def mixed_units(units: Sequence[str]) -> ExpressionError:
     relative = [unit for unit in different if unit not in PLAIN and _is_share(unit)]
     others = [unit for unit in different if unit not in relative]
     message = f"{' and '.join(different)} do not add"
-    if relative and others:
-        whole = (
-            "the carrier frequency"
-            if others[0].endswith("Hz")
-            else f"the value in {others[0]} it is a share of"
-        )
+    if relative and others and others[0].endswith("Hz"):
         return ExpressionError(
-            f"{message} without {whole}",
+            f"{message} without the carrier frequency",
             hint=f"write it as in '± (0.1 {relative[0]} of carrier + 12 {others[0]})' and declare the value of carrier",
+        )
+    if relative and others:
+        amount = f"1 {difference_unit(others[0])}" if unit_of(others[0]).is_log else f"10 {relative[0]}"
+        return ExpressionError(
+            f"{message} without the value in {others[0]} it is a share of",
+            hint=f"write a tolerance as in '28 {others[0]} ± {amount}'",
         )
     return ExpressionError(message, hint="write both parts in one unit")
 
