@@ -24,7 +24,7 @@ from specflow.verification.credit import credit
 from specflow.verification.judging import Judging
 from specflow.verification.limit_inputs import is_plain, limit_columns
 from specflow.verification.points import Bench, ItemPoints, item_points
-from specflow.verification.readings import Readings, readings_of, serving
+from specflow.verification.readings import Readings, Served, readings_of, serving
 from specflow.verification.records import Records
 from specflow.verification.standing import STANDINGS
 from specflow.verification.unmatched import serving_nothing
@@ -50,14 +50,19 @@ class Assessment:
 
 @dataclass(frozen=True, slots=True)
 class Ground:
-    """The records of a limit, what they serve, and the verdicts: the same for all activities."""
+    """The records of a limit and what they serve: the same for all activities.
+
+    ``readings`` are the verdicts where every reading is judged by itself; None where that takes others into account
+    (statistics, allowances), because which of them count differs between activities.
+    """
 
     points: Points
     matching: Matching
     records: Records
-    readings: Readings
+    served: Served
+    judging: Judging
+    readings: Readings | None
     nothing_required: NDArray[np.bool_] | None
-    together: bool = False
 
 
 def assess(requirement: Requirement, activities: Sequence[Activity], workspace: Workspace) -> Assessment:
@@ -107,13 +112,13 @@ def _assessment(
         tuple(one for bench in benches for one in conflicts(bench, unit, tolerance, workspace.policy)),
         _mismatches(grounds, workspace),
         tuple(one for ground in grounds for one in _ambiguous(ground)),
-        tuple(dict.fromkeys(note for one in grounds for note in _notes(one))),
+        tuple(dict.fromkeys(note for one in benches for note in _notes(one))),
     )
 
 
-def _notes(ground: Ground) -> tuple[str, ...]:
+def _notes(bench: Bench) -> tuple[str, ...]:
     """Return what was done to values and conditions, and how many readings are too wide to decide."""
-    return (*_too_wide(ground.readings), *ground.records.notes, *ground.matching.notes)
+    return (*_too_wide(bench.readings), *bench.records.notes, *bench.matching.notes)
 
 
 def _too_wide(readings: Readings) -> tuple[str, ...]:
@@ -136,14 +141,14 @@ def lay_ground(requirement: Requirement, member: Member, points: Points, workspa
     matched = workspace.matching(points, conditions)
     served = readings_of(records, *serving(records, matched.record, matched.point))
     judging = Judging(requirement, member.limit, points, records, conditions, workspace)
-    readings, together = judging.readings(served)
     return Ground(
         points,
         matched.matching,
         records,
-        readings,
+        served,
+        judging,
+        judging.one_by_one(served) if judging.each_alone else None,
         _nothing_required(member.limit, points, workspace),
-        together,
     )
 
 
@@ -159,23 +164,27 @@ def _nothing_required(limit: Limit, points: Points, workspace: Workspace) -> NDA
 
 
 def _bench(requirement: Requirement, activity: Activity, ground: Ground, workspace: Workspace) -> Bench:
-    weights = credit(activity, requirement.provers, ground.records, ground.readings, workspace)
+    weights = credit(activity, requirement.provers, ground.records, ground.served.record, workspace)
+    readings = ground.readings
+    if readings is None:
+        readings, weights = ground.judging.among_others(ground.served, weights)
     return Bench(
         ground.points,
         ground.matching,
         ground.records,
-        ground.readings,
+        readings,
         weights,
         ground.nothing_required,
         requirement.decision_rule.conditional_pass_counts,
-        ground.together,
+        ground.judging.together,
     )
 
 
 def _standing(ground: Ground) -> Mapping[Standing, int]:
     """Count the standing of records that serve a required point, those that no longer count included."""
     if ground.records.all_accepted:
-        return {Standing.ACCEPTED: ground.readings.size} if ground.readings.size else {}
+        count = len(ground.served.record)
+        return {Standing.ACCEPTED: count} if count else {}
     codes = ground.records.standing[ground.matching.record]
     codes = codes[~np.isnan(ground.records.low[ground.matching.record])]
     counts: Counter[Standing] = Counter()

@@ -22,7 +22,6 @@ from specflow.model.base import code_key
 from specflow.model.block import HardwareType
 from specflow.model.evidence import EvidenceTable
 from specflow.model.requirement import Activity, Method, Provers, Stage
-from specflow.verification.readings import Readings
 from specflow.verification.records import Records, Source
 from specflow.verification.standing import ACCEPTED, STALE
 from specflow.verification.workspace import Workspace
@@ -57,6 +56,10 @@ class Credit:
     stale: Flags
     why: tuple[str, ...] = ()
 
+    def take(self, pairs: NDArray[np.intp] | Flags) -> Credit:
+        """Return the credit of the pairs chosen."""
+        return Credit(self.rank[pairs], self.counts[pairs], self.stale[pairs], self.why)
+
 
 def is_of_design(source: Source) -> bool:
     """Whether evidence is about the design and so holds for every item of the block."""
@@ -64,9 +67,13 @@ def is_of_design(source: Source) -> bool:
 
 
 def credit(
-    activity: Activity, provers: Provers, records: Records, readings: Readings, workspace: Workspace
+    activity: Activity,
+    provers: Provers,
+    records: Records,
+    record: NDArray[np.intp],
+    workspace: Workspace,
 ) -> Credit:
-    """Return rank and credit of every pair for one activity."""
+    """Return rank and credit of every pair for one activity; ``record`` (p,) are the readings of the pairs."""
     kinds: list[tuple[int, bool, bool]] = []
     why: dict[str, None] = {}
     named = _named(provers, workspace)
@@ -77,20 +84,22 @@ def credit(
             own = reason or _item_reason(activity, source, item, named, workspace)
             kinds.append((_rank(activity, source, item, workspace), not own and not outdated, bool(outdated)))
             why.update(dict.fromkeys(text for text in (own, outdated) if text))
-    return _spread(records, readings, kinds, tuple(why))
+    return _spread(records, record, kinds, tuple(why))
 
 
 def _spread(
-    records: Records, readings: Readings, kinds: Sequence[tuple[int, bool, bool]], why: tuple[str, ...]
+    records: Records,
+    record: NDArray[np.intp],
+    kinds: Sequence[tuple[int, bool, bool]],
+    why: tuple[str, ...],
 ) -> Credit:
     """Give every pair what its source and item have; ``kinds`` holds rank, credit, staleness, items fastest."""
-    size = readings.size
     if records.all_accepted and len(set(kinds)) == 1:
-        return replace(_uniform(size, *kinds[0]), why=why)
-    kind = records.item[readings.record]
+        return replace(_uniform(len(record), *kinds[0]), why=why)
+    kind = records.item[record]
     if len(records.sources) > 1:
-        kind = kind + records.source[readings.record] * len(records.items)
-    standing = records.standing[readings.record]
+        kind = kind + records.source[record] * len(records.items)
+    standing = records.standing[record]
     ranks, counting, outdated = zip(*kinds, strict=True) if kinds else ((), (), ())
     return Credit(
         np.array(ranks, np.int8)[kind],

@@ -1,4 +1,9 @@
-"""Judging the readings of one limit: plain, as a statistic of many, or with exceptions that are let pass."""
+"""Judging the readings of one limit: one by one, as a statistic of many, or with exceptions that are let pass.
+
+A statistic (and an allowance, and a mask that asks for a whole sweep) is made of readings that belong together: of one
+point and item, and of one *kin*: the same rank, standing and credit. So what may not count never enters a statistic
+that does; it is put together by itself and shows what it would come to, as progress or as an open fail.
+"""
 
 from __future__ import annotations
 
@@ -14,12 +19,17 @@ from specflow.model.columns import Columns
 from specflow.model.limit import Allowance, Allowed, Exceptions, Limit, Mask, Population
 from specflow.model.requirement import Requirement
 from specflow.model.verdict import Verdict
+from specflow.verification.credit import Credit
 from specflow.verification.limit_inputs import is_plain, limit_columns
 from specflow.verification.model_range import outside_validated_range
 from specflow.verification.populations import Statistic, condensed, forgiven, with_too_few
 from specflow.verification.readings import Judgement, Readings, Served, judge
 from specflow.verification.records import Records
+from specflow.verification.standing import STANDINGS
 from specflow.verification.workspace import Workspace
+
+Rows = NDArray[np.intp]
+_INSIDE = "a statistic inside a table or a gate is not computed"
 
 
 @dataclass(frozen=True, slots=True)
@@ -33,34 +43,64 @@ class Judging:
     conditions: Columns
     workspace: Workspace
 
-    def readings(self, served: Served) -> tuple[Readings, bool]:
-        """Return the judged readings, and whether the values of all items were taken together."""
-        readings, together = self._by_shape(served)
-        outside = outside_validated_range(self.records, self.conditions)
-        if outside is not None and outside[readings.record].any():
-            verdict = np.where(outside[readings.record], np.int8(Verdict.INCONCLUSIVE), readings.verdict)
-            why = (*readings.why, "some results lie outside the range in which their model was validated")
-            readings = replace(readings, verdict=verdict, why=why)
-        return readings, together
-
-    def _by_shape(self, served: Served) -> tuple[Readings, bool]:
-        if is_plain(self.limit):
-            return self._judged(self.limit, served), False
+    @property
+    def each_alone(self) -> bool:
+        """Whether the verdict of a reading depends on nothing but itself."""
         tree = self.limit.tree
-        if isinstance(tree, Population):
-            return self._of_population(tree, served)
-        if isinstance(tree, Allowed):
-            return self._allowed(
-                self._judged(self.limit, served), served, tree.allowance, self.records.item
-            ), False
-        if isinstance(tree, Mask) and tree.allowances:
-            readings = self._judged(self.limit, served)
-            for allowance in tree.allowances:
-                readings = self._allowed(readings, served, allowance, self.records.item)
-            return readings, False
-        if any(isinstance(node, Population | Allowed) for node in walk_limit(tree) if node is not tree):
-            return self._undecided(served, "a statistic inside a table or a gate is not computed"), False
-        return self._judged(self.limit, served), False
+        return is_plain(self.limit) or not (isinstance(tree, Population | Allowed) or _allowances(self.limit))
+
+    @property
+    def together(self) -> bool:
+        """Whether the values of all items are taken together."""
+        statistic = self._statistic()
+        return statistic is not None and statistic.over_items
+
+    def one_by_one(self, served: Served) -> Readings:
+        """Return the readings, each judged by itself."""
+        plain = is_plain(self.limit)
+        if not plain and any(isinstance(node, Population | Allowed) for node in walk_limit(self.limit.tree)):
+            return self._undecided(served, _INSIDE)
+        return self._samples(served)
+
+    def among_others(self, served: Served, weights: Credit) -> tuple[Readings, Credit]:
+        """Return readings (or the statistics made of them) judged with those they belong to, and their credit."""
+        statistic = self._statistic()
+        if statistic is not None:
+            return self._of_population(statistic, served, weights)
+        readings = self._samples(served)
+        groups = self._groups(served, weights)
+        for allowance in _allowances(self.limit):
+            readings = _allowed(readings, allowance, groups)
+        return readings, weights
+
+    def _samples(self, served: Served) -> Readings:
+        """Return the readings as they are, before any of them is let pass."""
+        return self._within_validated_range(self._judged(self.limit, served))
+
+    def _statistic(self) -> Statistic | None:
+        tree = self.limit.tree
+        if not isinstance(tree, Population):
+            return None
+        return Statistic(tree, self.limit.unit, self.conditions, self.records)
+
+    def _within_validated_range(self, readings: Readings, groups: list[Rows] | None = None) -> Readings:
+        """Decide nothing from results outside the range in which their model was validated.
+
+        ``groups`` are the readings that each value is made of: one of them outside is enough.
+        """
+        outside = outside_validated_range(self.records, self.conditions)
+        if outside is None:
+            return readings
+        hit = (
+            outside[readings.record]
+            if groups is None
+            else np.array([outside[rows].any() for rows in groups], bool)
+        )
+        if not hit.any():
+            return readings
+        verdict = np.where(hit, np.int8(Verdict.INCONCLUSIVE), readings.verdict)
+        why = (*readings.why, "some results lie outside the range in which their model was validated")
+        return replace(readings, verdict=verdict, why=why)
 
     def _judged(self, limit: Limit, served: Served) -> Readings:
         declared = self.workspace.declared
@@ -74,40 +114,46 @@ class Judging:
         verdict = np.full(readings.size, Verdict.INCONCLUSIVE, np.int8)
         return replace(readings, verdict=verdict, why=(why, *readings.why))
 
-    def _of_population(self, node: Population, served: Served) -> tuple[Readings, bool]:
-        statistic = Statistic(node, self.limit.unit, self.conditions, self.records.item)
-        values, few, why = condensed(statistic, self.records, served)
-        if why:
-            return self._undecided(values, why), statistic.over_items
-        readings = self._judged(self.limit, values)
-        if isinstance(node.statistic, Exceptions):
-            readings = self._excepted(readings, values, node.statistic, statistic)
-        return with_too_few(readings, few, node.least), statistic.over_items
+    def _of_population(
+        self, statistic: Statistic, served: Served, weights: Credit
+    ) -> tuple[Readings, Credit]:
+        weights = statistic.credit_of(served, weights)
+        found = condensed(statistic, served, self._groups(served, weights))
+        weights = weights.take(found.pairs)
+        if found.why:
+            return self._undecided(found.served, found.why), weights
+        readings = self._judged(self.limit, found.served)
+        if isinstance(statistic.node.statistic, Exceptions):
+            readings = self._excepted(readings, found.served, statistic.node.statistic, weights)
+        readings = self._within_validated_range(readings, found.records)
+        return with_too_few(readings, found.few, found.few_words), weights
 
-    def _excepted(
-        self, readings: Readings, served: Served, node: Exceptions, statistic: Statistic
-    ) -> Readings:
+    def _excepted(self, readings: Readings, served: Served, node: Exceptions, weights: Credit) -> Readings:
         relaxed = None
         if node.relaxed is not None:
             relaxed = self._judged(self.limit.model_copy(update={"tree": node.relaxed}), served)
-        groups = self._groups(served, None if statistic.over_items else self.records.item)
-        return forgiven(readings, relaxed, groups, lambda count: node.count)
+        return forgiven(readings, relaxed, self._groups(served, weights), lambda count: node.count)
 
-    def _allowed(
-        self, readings: Readings, served: Served, allowance: Allowance, item: NDArray[np.intp]
-    ) -> Readings:
-        """Let a share of the samples of each point exceed the limit by the excess."""
-        share = allowance.share.value / (100 if allowance.share.unit == "%" else 1)
-        excess = allowance.excess.value
-        within = readings.margin >= -excess
-        relaxed = replace(
-            readings, verdict=np.where(within, np.int8(Verdict.PASS), np.int8(Verdict.FAIL)).astype(np.int8)
-        )
-        return forgiven(
-            readings, relaxed, self._groups(served, item), lambda count: int(share * count + 1e-9)
-        )
+    def _groups(self, served: Served, weights: Credit) -> Rows:
+        """Return for every pair (p,) the number of the group it belongs to: point, item, kin."""
+        group = served.point.astype(np.intp)
+        if not self.together:
+            group = group * len(self.records.items) + self.records.item[served.record]
+        standing = self.records.standing[served.record].astype(np.intp)
+        kin = ((weights.rank.astype(np.intp) * 2 + weights.counts) * 2 + weights.stale) * len(STANDINGS)
+        return np.asarray((group << 8) + kin + standing)
 
-    def _groups(self, served: Served, item: NDArray[np.intp] | None) -> NDArray[np.intp]:
-        if item is None:
-            return served.point.astype(np.intp)
-        return served.point.astype(np.intp) * len(self.records.items) + item[served.record]
+
+def _allowances(limit: Limit) -> tuple[Allowance, ...]:
+    tree = limit.tree
+    if isinstance(tree, Allowed):
+        return (tree.allowance,)
+    return tree.allowances if isinstance(tree, Mask) else ()
+
+
+def _allowed(readings: Readings, allowance: Allowance, groups: Rows) -> Readings:
+    """Let a share of the samples of each group exceed the limit by the excess."""
+    share = allowance.share.value / (100 if allowance.share.unit == "%" else 1)
+    within = readings.margin >= -allowance.excess.value
+    relaxed = replace(readings, verdict=np.where(within, np.int8(Verdict.PASS), np.int8(Verdict.FAIL)))
+    return forgiven(readings, relaxed, groups, lambda count: int(share * count + 1e-9))

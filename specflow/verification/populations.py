@@ -31,6 +31,7 @@ from specflow.model.verdict import Verdict
 from specflow.statistics.sphere import grid_weights, percentile
 from specflow.statistics.tolerance import one_sided_factor, two_sided_factor
 from specflow.units import parse_unit
+from specflow.verification.credit import Credit
 from specflow.verification.readings import Readings, Served
 from specflow.verification.records import Records
 
@@ -48,7 +49,7 @@ class Statistic:
     node: Population
     unit: str
     columns: Columns
-    item: NDArray[np.intp]
+    records: Records
 
     @property
     def over_items(self) -> bool:
@@ -61,66 +62,91 @@ class Statistic:
         """Whether directions are weighed by solid angle."""
         return bool({name.casefold() for name in self.node.over} & _SPHERE_NAMES)
 
+    def credit_of(self, served: Served, weights: Credit) -> Credit:
+        """Return the credit of the readings in this statistic: one that names no item is no sample of items."""
+        names = self.records.items
+        if not self.over_items or "" not in names:
+            return weights
+        nameless = self.records.item[served.record] == names.index("")
+        if not nameless.any():
+            return weights
+        why = f"{int(nameless.sum())} readings name no item, and the limit is on a sample of items"
+        return replace(weights, counts=weights.counts & ~nameless, why=(*weights.why, why))
 
-def condensed(
-    statistic: Statistic, records: Records, served: Served
-) -> tuple[Served, NDArray[np.bool_], str]:
-    """Return one value for each point (and item), which of them come from too few values, and what cannot be computed.
 
-    The record of a value is the one nearest to it on the bad side.
+@dataclass(frozen=True, slots=True)
+class Condensed:
+    """One value a group: ``served`` (g,), the pair that stands for it, and the records that it was made of.
+
+    ``few`` (g,): made of too few values, in ``few_words``. ``why``: the statistic cannot be computed at all.
     """
-    node = statistic.node
+
+    served: Served
+    pairs: Rows
+    records: list[Rows]
+    few: NDArray[np.bool_]
+    few_words: str = ""
+    why: str = ""
+
+
+def condensed(statistic: Statistic, served: Served, groups: Rows) -> Condensed:
+    """Return one value for each group of pairs (``groups`` (p,) numbers them).
+
+    The record of a value is the one nearest to it on the bad side. Where the limit is on every value (*worst*,
+    *exceptions*) all of them stay.
+    """
+    node, every = statistic.node, np.arange(len(served.record))
     if node.of is not None:
-        return (
-            served,
-            np.zeros(len(served.record), bool),
-            "a statistic of a formula of several quantities is not computed",
-        )
+        return _nothing(served, "a statistic of a formula of several quantities is not computed")
     try:
-        served = _where(statistic, served)
+        pairs = every if node.where is None else every[_counting(statistic, served)]
     except ExpressionError as error:
-        return (
-            served,
-            np.zeros(len(served.record), bool),
-            f"which values count cannot be decided: {error.message}",
-        )
-    groups = _groups(statistic, records, served)
-    counts = [_size(statistic, records, served, rows) for rows in groups]
+        return _nothing(served, f"which values count cannot be decided: {error.message}")
+    members = [pairs[rows] for rows in _split(groups[pairs])]
+    counts = [_size(statistic, served, rows) for rows in members]
+    words = f"fewer values than the {node.least or _fewest(statistic)} that the limit asks for"
     if isinstance(node.statistic, Worst | Exceptions):
-        few = np.zeros(len(served.record), bool)
-        for rows, count in zip(groups, counts, strict=True):
+        few = np.zeros(len(every), bool)
+        for rows, count in zip(members, counts, strict=True):
             few[rows] = count < (node.least or 1)
-        return served, few, ""
-    reduce = _reduction(statistic, records)
-    parts = [reduce(served, rows) for rows in groups]
+        records = [served.record[one : one + 1] for one in pairs.tolist()]
+        return Condensed(served.take(pairs), pairs, records, few[pairs], words)
+    reduce = _reduction(statistic)
+    parts = [reduce(served, rows) for rows in members]
     few = np.array([count < max(node.least or 1, _fewest(statistic)) for count in counts], bool)
-    return _together(parts, served), few, ""
+    chosen = np.array([part[0] for part in parts], np.intp)
+    low, high, u = (np.array([part[place] for part in parts], np.float64) for place in (1, 2, 3))
+    values = Served(served.record[chosen], served.point[chosen], low, high, u)
+    return Condensed(values, chosen, [served.record[rows] for rows in members], few, words)
 
 
-def _where(statistic: Statistic, served: Served) -> Served:
-    if statistic.node.where is None:
-        return served
+def _nothing(served: Served, why: str) -> Condensed:
+    every = np.arange(len(served.record))
+    few = np.zeros(len(every), bool)
+    return Condensed(served, every, list(served.record[:, None]), few, why=why)
+
+
+def _counting(statistic: Statistic, served: Served) -> NDArray[np.bool_]:
+    assert statistic.node.where is not None
     holds, _ = evaluate_condition(statistic.node.where, statistic.columns)
-    return served.take(holds[served.record])
+    return np.asarray(holds[served.record])
 
 
-def _groups(statistic: Statistic, records: Records, served: Served) -> list[Rows]:
-    """Return the pairs that belong together: of one point, and of one item unless items belong together."""
-    if not len(served.record):
+def _split(groups: Rows) -> list[Rows]:
+    """Return the places of each group."""
+    if not len(groups):
         return []
-    key = served.point.astype(np.int64)
-    if not statistic.over_items:
-        key = key * len(records.items) + statistic.item[served.record]
-    order = np.argsort(key, kind="stable")
-    starts = np.flatnonzero(np.diff(key[order])) + 1
+    order = np.argsort(groups, kind="stable")
+    starts = np.flatnonzero(np.diff(groups[order])) + 1
     return list(np.split(order, starts))
 
 
-def _size(statistic: Statistic, records: Records, served: Served, rows: Rows) -> int:
+def _size(statistic: Statistic, served: Served, rows: Rows) -> int:
     """Return how many values a group has; items, not readings, where it runs over items."""
-    if statistic.over_items:
-        return len(np.unique(statistic.item[served.record[rows]]))
-    return len(rows)
+    if not statistic.over_items:
+        return len(rows)
+    codes = np.unique(statistic.records.item[served.record[rows]]).tolist()
+    return sum(statistic.records.items[code] != "" for code in codes)
 
 
 def _fewest(statistic: Statistic) -> int:
@@ -130,7 +156,7 @@ def _fewest(statistic: Statistic) -> int:
 Part = tuple[int, float, float, float]
 
 
-def _reduction(statistic: Statistic, records: Records) -> Callable[[Served, Rows], Part]:
+def _reduction(statistic: Statistic) -> Callable[[Served, Rows], Part]:
     """Return the function from a group of readings to (representative pair, low, high, u)."""
     how = statistic.node.statistic
     if isinstance(how, Mean):
@@ -176,7 +202,7 @@ def _tolerance_bound(how: ToleranceBound, statistic: Statistic, served: Served, 
     """Return mean ± k·s over the items; an interval that the population fills, for a two-sided limit."""
     side = side_of(statistic.node.limit)
     worst = min if side is Side.LOWER else max
-    item = statistic.item[served.record[rows]]
+    item = statistic.records.item[served.record[rows]]
     values = np.array([worst(served.low[rows][item == one]) for one in np.unique(item)])
     if len(values) < 2:
         return int(rows[0]), float(values[0]), float(values[0]), _common(served.u[rows])
@@ -195,19 +221,12 @@ def _tolerance_bound(how: ToleranceBound, statistic: Statistic, served: Served, 
     return int(rows[extreme]), low, high, _common(served.u[rows])
 
 
-def _together(parts: list[Part], served: Served) -> Served:
-    chosen = np.array([part[0] for part in parts], np.intp)
-    low, high, u = (np.array([part[place] for part in parts], np.float64) for place in (1, 2, 3))
-    return Served(served.record[chosen], served.point[chosen], low, high, u)
-
-
-def with_too_few(readings: Readings, few: NDArray[np.bool_], needed: int | None) -> Readings:
+def with_too_few(readings: Readings, few: NDArray[np.bool_], words: str) -> Readings:
     """Return readings of which those from too few values are insufficient, whatever they would say."""
     if not few.any():
         return readings
     verdict = readings.verdict.copy()
     verdict[few & (verdict <= Verdict.CONDITIONAL_PASS)] = Verdict.INSUFFICIENT
-    words = f"fewer values than the {needed or 2} that the limit asks for"
     return replace(readings, verdict=verdict, why=(*readings.why, words))
 
 

@@ -82,8 +82,8 @@ class Served:
     high: Array
     u: Array
 
-    def take(self, kept: NDArray[np.bool_]) -> Served:
-        """Return the pairs marked."""
+    def take(self, kept: NDArray[np.bool_] | Rows) -> Served:
+        """Return the pairs chosen."""
         return Served(self.record[kept], self.point[kept], self.low[kept], self.high[kept], self.u[kept])
 
 
