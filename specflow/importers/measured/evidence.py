@@ -212,12 +212,4 @@ def _ask_for_item(work: TableWork, method: Method, items: TextColumn) -> None:
 
 def _one_of(kind: type[E], work: TableWork, name: str, default: E) -> E:
     text = work.stated.text(name)
-    if not text:
-        return default
-    plain = text.casefold().strip().replace("_", " ")
-    for one in kind:
-        if one.value == plain:
-            return one
-    known = ", ".join(one.value for one in kind)
-    work.ask(name, "", f"{text!r} is no {name} ({work.stated.by(name)})", f"one of: {known}")
-    return default
+    return kind(text.casefold()) if text else default

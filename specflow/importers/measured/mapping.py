@@ -14,6 +14,7 @@ from typing import Any
 from specflow.errors import FileError
 from specflow.importers.measured.header_text import header_key
 from specflow.importers.measured.result import Role
+from specflow.model.evidence import SpectrumKind
 
 FORMAT = 1
 
@@ -112,24 +113,39 @@ def read_mappings(text: str, name: str) -> tuple[LayoutMapping, ...]:
         raise FileError(
             "a mapping of another format", where=name, hint=f"this program reads format = {FORMAT}"
         )
-    tables = data.pop("table", None)
+    tables = _entries_of(data, "table", name)
     _refuse_unknown(data, (), name)
-    if not isinstance(tables, list) or not tables:
+    if not tables:
         raise FileError("the mapping has no [[table]]", where=name, hint="let --propose-mapping write one")
     return tuple(_layout(table, f"{name}, table {number}") for number, table in enumerate(tables, 1))
 
 
 def _layout(data: dict[str, Any], where: str) -> LayoutMapping:
     columns = [
-        _column(entry, f"{where}, column {number}") for number, entry in enumerate(data.pop("column", []), 1)
+        _column(entry, f"{where}, column {number}")
+        for number, entry in enumerate(_entries_of(data, "column", where), 1)
     ]
-    pivot = data.pop("pivot", None)
-    stated = {key: str(value) for key, value in data.pop("stated", {}).items()}
+    pivot = _part_of(data, "pivot", where)
+    stated = {key: str(value) for key, value in _part_of(data, "stated", where).items()}
     stated |= {key: str(data.pop(key)) for key in _STATED if key in data}
-    _check(LayoutMapping, data, where)
+    _check(LayoutMapping, data, where, but=("columns", "stated", "pivot"))
     return LayoutMapping(
-        **data, stated=stated, columns=tuple(columns), pivot=None if pivot is None else _pivot(pivot, where)
+        **data, stated=stated, columns=tuple(columns), pivot=_pivot(pivot, where) if pivot else None
     )
+
+
+def _entries_of(data: dict[str, Any], key: str, where: str) -> list[dict[str, Any]]:
+    entries = data.pop(key, [])
+    if not isinstance(entries, list) or not all(isinstance(entry, dict) for entry in entries):
+        raise FileError(f"{key} is no list of entries", where=where, hint=f"write each as [[...{key}]]")
+    return entries
+
+
+def _part_of(data: dict[str, Any], key: str, where: str) -> dict[str, Any]:
+    part = data.pop(key, {})
+    if not isinstance(part, dict):
+        raise FileError(f"{key} is no group of words", where=where, hint=f"write it as [table.{key}]")
+    return part
 
 
 def _column(data: dict[str, Any], where: str) -> ColumnMapping:
@@ -139,9 +155,18 @@ def _column(data: dict[str, Any], where: str) -> ColumnMapping:
     role = data.get("role", "")
     if role and role not in ROLES:
         raise FileError(f"{role!r} is no role of a column", where=where, hint=f"one of: {', '.join(ROLES)}")
+    _check_spectrum(data, where)
     if "k" in data:
         data["k"] = float(data["k"])
     return ColumnMapping(**data)
+
+
+def _check_spectrum(data: Mapping[str, Any], where: str) -> None:
+    known = [kind.value for kind in SpectrumKind]
+    if data.get("spectrum", known[0]) not in known:
+        raise FileError(
+            f"{data['spectrum']!r} is no kind of spectrum", where=where, hint=f"one of: {', '.join(known)}"
+        )
 
 
 def _pivot(data: dict[str, Any], where: str) -> PivotMapping:
@@ -150,15 +175,19 @@ def _pivot(data: dict[str, Any], where: str) -> PivotMapping:
     for name in ("header", "parameter", "unit"):
         if not data.get(name):
             raise FileError(f"the pivot states no {name}", where=where, hint=f'write {name} = "..."')
-    if "{" not in data["header"]:
+    _check_spectrum(data, where)
+    names = re.findall(r"\{(\w+)\}", data["header"])
+    if not names or len(set(names)) < len(names) or not all(name.isidentifier() for name in names):
         raise FileError(
-            "the pattern names no dimension", where=where, hint='write header = "Gain @ {frequency} GHz"'
+            "the pattern must name dimensions, each once",
+            where=where,
+            hint='write header = "Gain @ {frequency} GHz"',
         )
     return PivotMapping(**data)
 
 
-def _check(kind: type[Any], data: Mapping[str, Any], where: str) -> None:
-    known = {one.name: str(one.type) for one in fields(kind)}
+def _check(kind: type[Any], data: Mapping[str, Any], where: str, but: tuple[str, ...] = ()) -> None:
+    known = {one.name: str(one.type) for one in fields(kind) if one.name not in but}
     _refuse_unknown(data, tuple(known), where)
     for key, value in data.items():
         expected = known[key].split(" ")[0].split("[")[0]
@@ -167,7 +196,7 @@ def _check(kind: type[Any], data: Mapping[str, Any], where: str) -> None:
             "int": isinstance(value, int) and not isinstance(value, bool) and value > 0,
             "float": isinstance(value, int | float) and not isinstance(value, bool) and value > 0,
             "str": isinstance(value, str),
-            "Mapping": isinstance(value, dict),
+            "Mapping": isinstance(value, dict) and all(isinstance(one, str) for one in value.values()),
         }
         if not right.get(expected, True):
             raise FileError(f"{key} = {value!r} is not what belongs there", where=where, hint=f"a {expected}")

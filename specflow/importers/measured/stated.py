@@ -196,6 +196,10 @@ class _Collector:
         if cell and choices and text.casefold() not in {choice.value for choice in choices}:
             self._leave(key, text, cell)  # "Method: TP 4, annex B" of a sheet is another method than ours
             return
+        if choices and text.casefold() not in {choice.value for choice in choices}:
+            known_choices = ", ".join(choice.value for choice in choices)
+            self._ask(key, cell, f"{text!r} is no {name} ({by})", f"one of: {known_choices}")
+            return
         if name == "item":
             self.stated.items.append(Said(text, by, key))
         known = self.stated.said.get(name)

@@ -7,7 +7,7 @@ from typing import Any
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 from openpyxl import load_workbook
 
@@ -71,6 +71,7 @@ def check(table: MeasuredTable, cell_at: Any) -> None:
             assert float(arrays.low[row]) == number, (value.name, row, cell)
 
 
+@settings(deadline=None)
 @given(ROWS)
 def test_workbooks(folder: Path, rows: list[list[Any]]) -> None:
     rows = [
@@ -83,6 +84,7 @@ def test_workbooks(folder: Path, rows: list[list[Any]]) -> None:
         check(table, lambda row, column: sheet.cell(row, column).value)
 
 
+@settings(deadline=None)
 @given(ROWS)
 def test_text_files(folder: Path, rows: list[list[Any]]) -> None:
     cells: list[list[Any]] = [["Gain (dB)", "f (GHz)"], [20, 27.5], *rows]

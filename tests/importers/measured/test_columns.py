@@ -183,6 +183,13 @@ def test_block_and_item_must_be_known_somehow(tmp_path: Path) -> None:
     assert document is not None and document.simulation_version == "3.1"
 
 
+def test_a_method_or_stage_that_is_none_is_asked_about(tmp_path: Path) -> None:
+    path = book(tmp_path / "a.xlsx", [["f (GHz)", "Gain (dB)"], [27.5, 20]])
+    for name in ("method", "stage", "spectrum"):
+        asked = questions(one_table(path, stated={"block": "LNA", "item": "LNA-1", name: "hopeful"}))
+        assert f"'hopeful' is no {name}" in asked and "one of:" in asked
+
+
 def test_what_the_file_and_the_person_say_of_the_whole_table(tmp_path: Path) -> None:
     rows = [
         ["Operator", "A. B.", "Procedure", "TP-12 rev B"],

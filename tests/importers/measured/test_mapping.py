@@ -6,7 +6,7 @@ import tomllib
 from pathlib import Path
 
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from specflow.errors import FileError
@@ -133,6 +133,15 @@ def test_a_pivot_reads_conditions_from_headers(tmp_path: Path) -> None:
         ('format = 1\n[[table]]\n[[table.column]]\nheader = "x"\nrole = "valve"\n', "'valve' is no role"),
         ('format = 1\n[[table]]\n[[table.column]]\nheader = "x"\nk = "two"\n', "k = 'two'"),
         ('format = 1\n[[table]]\n[table.pivot]\nheader = "x"\n', "no parameter"),
+        (
+            'format = 1\n[[table]]\n[table.pivot]\nheader = "{1}"\nparameter = "gain"\nunit = "dB"\n',
+            "dimensions",
+        ),
+        ('format = 1\n[[table]]\n[[table.column]]\nheader = "x"\nspectrum = "noisy"\n', "'noisy' is no kind"),
+        ("format = 1\n[[table]]\ncolumns = []\n", "'columns' is not known"),
+        ("format = 1\ntable = [1]\n", "no list of entries"),
+        ("format = 1\n[[table]]\n[table.column]\n", "no list of entries"),
+        ("format = 1\n[[table]]\nstated = 3\n", "no group of words"),
         ('format = 1\n[[table]]\nskip = "yes"\n', "skip = 'yes'"),
         ("format = 1\n[[table]]\nheader_rows = 0\n", "header_rows = 0"),
     ],
@@ -167,6 +176,7 @@ def test_a_parameter_that_is_unknown_is_named_with_the_nearest(tmp_path: Path) -
 names = st.text(st.characters(exclude_categories=["Cs"]), min_size=1, max_size=12).filter(str.strip)
 
 
+@settings(deadline=None)
 @given(names, names, st.booleans(), st.none() | st.floats(0.5, 4))
 def test_what_is_written_reads_back(header: str, stated: str, fill: bool, k: float | None) -> None:
     column = ColumnMapping(header=header, role="uncertainty", unit="dB", k=k, fill_down=fill)

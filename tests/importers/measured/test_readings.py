@@ -10,7 +10,7 @@ from typing import Any
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from tests.importers.measured.make import book, low, one_table, questions, rejected, taken, text
@@ -177,12 +177,14 @@ def test_an_uncalculated_formula_and_an_error_cell_of_any_writer(tmp_path: Path)
     assert "never calculated" in reasons["B2"] and "#REF!" in reasons["B3"]
 
 
+@settings(deadline=None)
 @given(st.lists(st.floats(-200, 200).map(lambda value: round(value, 6)), min_size=1, max_size=8))
 def test_numbers_come_in_as_they_were_written(tmp_path_factory: Any, numbers: list[float]) -> None:
     path = tmp_path_factory.mktemp("numbers")
     assert low(taken(values_of(path, "Gain (dB)", list(numbers))), "Gain") == numbers
 
 
+@settings(deadline=None)
 @given(st.lists(st.decimals(-200, 200, places=3), min_size=1, max_size=8))
 def test_decimal_commas_come_in_rightly_or_not_at_all(tmp_path_factory: Any, numbers: list[Decimal]) -> None:
     """A lone "1,125" may be a thousand: then it is rejected."""
