@@ -15,7 +15,8 @@ def browse(project: ProjectOption = "", as_of: AsOfOption = "") -> None:
     bar, proof grid, and its trail up to the system and down to the cell. The keys are shown; ? explains them. What
     others store meanwhile is shown by itself.
     """
-    if not (sys.stdin.isatty() and sys.stdout.isatty()):
+    # The terminal library draws on stderr, so that too must be a terminal.
+    if not all(stream.isatty() for stream in (sys.stdin, sys.stdout, sys.stderr)):
         raise SpecflowError("browse needs a terminal", hint="specflow status prints the same figures")
     from specflow.tui.app import BrowseApp
     from specflow.workflows.browse import Browsing

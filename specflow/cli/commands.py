@@ -1,7 +1,7 @@
 """The list of all commands, and a group that imports a command only when it is asked for.
 
-``specflow --help`` has to be instant, so the sentence that it shows of each command stands here; a test holds it equal
-to the first line of the command's own help.
+``specflow --help`` has to be instant, so the sentence that it shows of each command stands here; a test holds it to
+the beginning of the command's own help.
 """
 
 from __future__ import annotations
@@ -34,7 +34,7 @@ HELP_NAMES = {"help_option_names": ["-h", "--help"]}
 COMMANDS = (
     CommandEntry("init", "Start a project: an empty project file and a workbook to fill in."),
     CommandEntry("load", "Load requirements, blocks and conditions from a workbook."),
-    CommandEntry("attach", "Attach a file of measured or simulated results."),
+    CommandEntry("attach", "Attach measurement files."),
     CommandEntry("status", "Show what is proved, failing and missing."),
     CommandEntry("check", "List the findings of the rules."),
     CommandEntry("trace", "Walk from a requirement up to the system and down to the cell."),

@@ -151,7 +151,7 @@ class Layout:
         """Return the layout that shows most."""
         count = max((len(row) for row in grid.cells), default=0)
         title = max((len(one) + 1 for one in grid.row_titles if one), default=0)
-        title = min(title, width // 2)
+        title = min(title, max(width // 2, width - count * NARROWEST))
         words = [len(cell.margin) + 4 for row in grid.cells for cell in row if cell]
         wide = max([*words, *(len(one) + 1 for one in grid.column_titles)], default=NARROWEST)
         room = width - title
@@ -182,21 +182,37 @@ def _header(grid: ProofGrid, layout: Layout, cursor: Place) -> list[Content]:
         words = f"{titles[0]} … {titles[-1]}" if len(titles) > 1 else titles[0]
         more = len(grid.column_titles) - len(titles)
         words = f" {words} (‹ › {more} more)" if more else f" {words}"
-    return [Content.styled((" " * layout.title + words)[: layout.width], "$secondary")]
+    line = " " * layout.title + words
+    if len(line) > layout.width:
+        line = _cut(words.strip(), layout.width).rjust(layout.width)
+    return [Content.styled(line, "$secondary")]
 
 
 def _rows(grid: ProofGrid, layout: Layout, cursor: Place, focused: bool) -> list[Content]:
     lines = []
     for number, row in enumerate(grid.cells):
-        title = grid.row_titles[number] if number < len(grid.row_titles) else ""
+        title = _row_title(grid, number)
         first = layout.first(grid, cursor)
         starts = range(0, len(row), layout.columns) if layout.folded else (first,)
         for start in starts:
-            line = Content.styled(_cut(title, layout.title - 1).ljust(layout.title), "$secondary")
+            room = max(layout.title - 1, 0)
+            line = Content.styled(_cut(title, room).rjust(room).ljust(layout.title), "$secondary")
             for column in range(start, min(start + layout.columns, len(row))):
                 line += _cell(row[column], layout.cell, Place(number, column) == cursor, focused)
             lines.append(line)
     return lines
+
+
+def _row_title(grid: ProofGrid, number: int) -> str:
+    """Return a row's title, without the leading parts that it has in common with the row above."""
+    if number >= len(grid.row_titles):
+        return ""
+    parts = grid.row_titles[number].split(", ")
+    above = grid.row_titles[number - 1].split(", ") if number else []
+    common = 0
+    while common < min(len(parts) - 1, len(above)) and parts[common] == above[common]:
+        common += 1
+    return ", ".join(parts[common:])
 
 
 def _cut(text: str, width: int) -> str:
