@@ -10,11 +10,12 @@ from collections.abc import Sequence
 from dataclasses import dataclass, field
 from pathlib import PurePath
 
-from specflow.conditions import make_conditions_set, set_words
+from specflow.conditions import find_dimension, make_conditions_set, set_words
 from specflow.importers.published_dimensions import published_dimensions
 from specflow.importers.published_limits import NotTaken, PublishedLimit, PublishedTable
 from specflow.importers.published_quantity import PublishedQuantity, published_quantity
 from specflow.limits import limit_words
+from specflow.limits.tree import varying_names
 from specflow.model.base import MAX_CODE_LENGTH, Document, code_key
 from specflow.model.block import Block
 from specflow.model.conditions import ConditionsSet, Dimension
@@ -33,6 +34,7 @@ PUBLISHED_FINDINGS: dict[str, str] = {
     "published-not-read": "A row is a limit, but it cannot be read.",
     "published-own-parameter": "No known parameter fits a title; one is proposed for the project.",
     "published-no-step": "A range has no step; evidence is asked for at both of its ends.",
+    "published-limit-varies": "A limit differs by a condition of which the table requires no values.",
     "published-id-too-long": "The id is too long for a requirement with its activities.",
 }
 
@@ -117,8 +119,27 @@ def _take(making: _Making, limit: PublishedLimit) -> None:
         note=_note(verbatim),
         origin=making.origin(limit.rows[0]),
     )
+    _doubt(making, requirement)
     making.requirements.append(_as_known(making, requirement))
     making.echoes[code] = limit_words(limit.limit, quantity.parameter)
+
+
+def _doubt(making: _Making, requirement: Requirement) -> None:
+    """Report a table of limits or a mask that nothing asks to be shown at all its parts."""
+    found = next((one for one in making.sets.values() if one.id == requirement.conditions), None)
+    required = {dimension.name for dimension in found.dimensions} if found else set()
+    for name in sorted(varying_names(requirement.limit.tree)):
+        known = find_dimension(name)
+        if name in required or (known is not None and known.name in required):
+            continue
+        making.report(
+            "published-limit-varies",
+            Severity.INFO,
+            f"the limit differs by {name}, of which the table requires no values; evidence at one counts for all",
+            subject=requirement.id,
+            remedy=f"give the requirement a conditions set with the values of {name} that must be shown",
+            origin=requirement.origin,
+        )
 
 
 def _propose(making: _Making, limit: PublishedLimit, quantity: PublishedQuantity, code: str) -> None:

@@ -109,3 +109,14 @@ def tree_names(node: LimitNode) -> frozenset[str]:
     """Return the names that the evaluation of a tree needs."""
     names = {part.axis for part in walk_limit(node) if isinstance(part, Mask)}
     return frozenset(names).union(*(expression_names(value) for value in expressions_in(node)))
+
+
+def varying_names(node: LimitNode) -> frozenset[str]:
+    """Return the names by which a table of limits or a mask tells its parts apart."""
+    names: set[str] = set()
+    for part in walk_limit(node):
+        if isinstance(part, Mask):
+            names.add(part.axis)
+        elif isinstance(part, Cases):
+            names.update(*(expression_names(case.when) for case in part.cases))
+    return frozenset(names)

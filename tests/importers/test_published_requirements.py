@@ -198,3 +198,14 @@ def test_what_a_table_cannot_say_stays_as_the_project_has_it(tmp_path: Path) -> 
         "<= 3.0 dB",
     )
     assert of(again, Activity) == []
+
+
+def test_a_mask_that_nothing_asks_to_be_shown_everywhere_is_reported(tmp_path: Path) -> None:
+    rows = (
+        "M-1,s,v,c,mask breakpoint,max,0,dBr,offset_MHz=9\n"
+        "M-2,s,v,c,mask breakpoint,max,-20,dBr,offset_MHz=11\n"
+        "R-1,s,v,c,EVM,max,8,%,\n"
+    )
+    found = [one for one in draft(tmp_path, rows).findings if one.rule == "published-limit-varies"]
+    assert [one.subject for one in found] == ["M"]
+    assert "differs by offset" in found[0].message

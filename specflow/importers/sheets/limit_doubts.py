@@ -5,12 +5,11 @@ from __future__ import annotations
 from specflow.conditions import find_dimension
 from specflow.importers.sheets.intake import Intake
 from specflow.importers.sheets.row import SheetRow
-from specflow.limits import expression_names
 from specflow.limits.expression_shape import plain_number
-from specflow.limits.tree import walk_limit
+from specflow.limits.tree import varying_names, walk_limit
 from specflow.model.conditions import ConditionsSet
 from specflow.model.declared import DeclaredValue
-from specflow.model.limit import Between, Bound, Cases, Limit, Mask
+from specflow.model.limit import Between, Bound, Limit
 from specflow.model.parameter import Parameter
 
 #: Ratios that the dictionary describes as positive, and as negative, in dB; sheets often have them the other way round.
@@ -96,7 +95,7 @@ def _note_variation(row: SheetRow, intake: Intake, column: str, limit: Limit, co
         return
     required = {dimension.name for dimension in known.dimensions} if known else set()
     declared = {value.name for value in intake.all(DeclaredValue)}
-    for name in sorted(_varying(limit) - declared):
+    for name in sorted(varying_names(limit.tree) - declared):
         dimension = find_dimension(name)
         if dimension is None or {dimension.name, name} & required:
             continue
@@ -108,14 +107,3 @@ def _note_variation(row: SheetRow, intake: Intake, column: str, limit: Limit, co
             f"name a conditions set that has {dimension.name} with the values of the limit",
             rule="workbook-limit-varies",
         )
-
-
-def _varying(limit: Limit) -> set[str]:
-    """The names by which a table of limits or a mask tells its parts apart."""
-    names: set[str] = set()
-    for node in walk_limit(limit.tree):
-        if isinstance(node, Mask):
-            names.add(node.axis)
-        elif isinstance(node, Cases):
-            names.update(*(expression_names(case.when) for case in node.cases))
-    return names
