@@ -38,7 +38,8 @@ class Bounds:
 
     ``lower``/``upper`` None: that side has no bound at all; -inf/+inf: none for that record; NaN where ``unknown``.
     ``applies`` False: nothing is required of that record. There ``outside`` tells a place that the limit does not
-    reach (outside a mask, no case of a table, no limit) from a gate that is not open: *not triggered*.
+    reach (outside a mask, no case of a table) from where nothing is asked for on purpose (a gate that is not open, an
+    exclusion, "no limit"): *not triggered*.
     ``unknown``: an input was missing or there is no number yet; ``why`` says which.
     ``bandwidth_hz``: the measurement bandwidth the bound is stated in, NaN where it states none.
     """

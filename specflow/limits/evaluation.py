@@ -136,7 +136,7 @@ def evaluate_node(node: LimitNode, inputs: Inputs) -> Bounds:
         case Undefined(label=label, unit=unit):
             return _unknown(unit, f"the limit is {label}")
         case NoLimit():
-            return Bounds(None, None, "", applies=NO_FLAG, outside=ALL_FLAG)
+            return Bounds(None, None, "", applies=NO_FLAG)
 
 
 def _unit_found(leaf: Expression, inputs: Inputs) -> str | None:

@@ -49,7 +49,7 @@ def mask_bounds(mask: Mask, inputs: Inputs) -> Bounds:
         strict if mask.side is Side.LOWER else NO_FLAG,
         strict if mask.side is Side.UPPER else NO_FLAG,
         held | unknown,
-        ~held & ~unknown,
+        ~held & ~unknown & ~excluded,
         unknown,
         "",
         np.where(held, found.width, np.nan) if widths else None,

@@ -53,7 +53,7 @@ class Ground:
     """The records of a limit and what they serve: the same for all activities.
 
     ``readings`` are the verdicts where every reading is judged by itself; None where that takes others into account
-    (statistics, allowances), because which of them count differs between activities.
+    (statistics, allowances, sweeps), because which of them count differs between activities.
     """
 
     points: Points
@@ -63,6 +63,7 @@ class Ground:
     judging: Judging
     readings: Readings | None
     nothing_required: NDArray[np.bool_] | None
+    remarks: tuple[str, ...] = ()
 
 
 def assess(requirement: Requirement, activities: Sequence[Activity], workspace: Workspace) -> Assessment:
@@ -112,12 +113,16 @@ def _assessment(
         tuple(one for bench in benches for one in conflicts(bench, unit, tolerance, workspace.policy)),
         _mismatches(grounds, workspace),
         tuple(one for ground in grounds for one in _ambiguous(ground)),
-        tuple(dict.fromkeys(note for one in benches for note in _notes(one))),
+        tuple(dict.fromkeys([*_holes(grounds), *(note for one in benches for note in _notes(one))])),
     )
 
 
+def _holes(grounds: Sequence[Ground]) -> list[str]:
+    return [remark for ground in grounds for remark in ground.remarks]
+
+
 def _notes(bench: Bench) -> tuple[str, ...]:
-    """Return what was done to values and conditions, and how many readings are too wide to decide."""
+    """Return how many readings are too wide to decide, and what was done to values and conditions."""
     return (*_too_wide(bench.readings), *bench.records.notes, *bench.matching.notes)
 
 
@@ -148,19 +153,26 @@ def lay_ground(requirement: Requirement, member: Member, points: Points, workspa
         served,
         judging,
         judging.one_by_one(served) if judging.each_alone else None,
-        _nothing_required(member.limit, points, workspace),
+        *_nothing_required(member.limit, points, workspace),
     )
 
 
-def _nothing_required(limit: Limit, points: Points, workspace: Workspace) -> NDArray[np.bool_] | None:
-    """Return the points at which the limit asks for nothing, whatever is recorded; None where it always asks."""
+def _nothing_required(
+    limit: Limit, points: Points, workspace: Workspace
+) -> tuple[NDArray[np.bool_] | None, tuple[str, ...]]:
+    """Return the points at which the limit asks for nothing on purpose, whatever is recorded; None where it asks.
+
+    A required point that the limit does not reach is a hole in the requirement: it stays unproved, and that is said.
+    """
     if is_plain(limit) or (not tree_names(limit.tree) and limit.tree.kind != "no_limit"):
-        return None
+        return None, ()
     every = np.arange(points.size)
     columns = limit_columns(limit, points, None, every, every, workspace.declared)
     bounds = evaluate_limit(limit, LimitContext(columns, workspace.declared, points.size))
-    nothing = ~bounds.applies & ~bounds.unknown
-    return np.broadcast_to(nothing, (points.size,)) if nothing.any() else None
+    nothing = np.broadcast_to(~bounds.applies & ~bounds.unknown & ~bounds.outside, (points.size,))
+    holes = int(np.count_nonzero(np.broadcast_to(bounds.outside & ~bounds.unknown, (points.size,))))
+    words = f"the limit says nothing at {holes} of {points.size} required points: add a case for them, or 'no limit'"
+    return nothing if nothing.any() else None, (words,) if holes else ()
 
 
 def _bench(requirement: Requirement, activity: Activity, ground: Ground, workspace: Workspace) -> Bench:

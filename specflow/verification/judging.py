@@ -22,10 +22,11 @@ from specflow.model.verdict import Verdict
 from specflow.verification.credit import Credit
 from specflow.verification.limit_inputs import is_plain, limit_columns
 from specflow.verification.model_range import outside_validated_range
-from specflow.verification.populations import Statistic, condensed, forgiven, with_too_few
+from specflow.verification.populations import Statistic, condensed, forgiven, split, with_too_few
 from specflow.verification.readings import Judgement, Readings, Served, judge
 from specflow.verification.records import Records
 from specflow.verification.standing import STANDINGS
+from specflow.verification.sweeps import along, sweep_of, swept_axes
 from specflow.verification.workspace import Workspace
 
 Rows = NDArray[np.intp]
@@ -46,8 +47,10 @@ class Judging:
     @property
     def each_alone(self) -> bool:
         """Whether the verdict of a reading depends on nothing but itself."""
-        tree = self.limit.tree
-        return is_plain(self.limit) or not (isinstance(tree, Population | Allowed) or _allowances(self.limit))
+        if is_plain(self.limit):
+            return True
+        several = isinstance(self.limit.tree, Population | Allowed) or bool(_allowances(self.limit))
+        return not several and not self._swept
 
     @property
     def together(self) -> bool:
@@ -56,26 +59,46 @@ class Judging:
         return statistic is not None and statistic.over_items
 
     def one_by_one(self, served: Served) -> Readings:
-        """Return the readings, each judged by itself."""
-        plain = is_plain(self.limit)
-        if not plain and any(isinstance(node, Population | Allowed) for node in walk_limit(self.limit.tree)):
+        """Return the readings, each judged by itself: samples, before any of them is let pass."""
+        tree = self.limit.tree
+        below = () if is_plain(self.limit) else (node for node in walk_limit(tree) if node is not tree)
+        if any(isinstance(node, Population | Allowed) for node in below):
             return self._undecided(served, _INSIDE)
-        return self._samples(served)
+        return self._within_validated_range(self._judged(self.limit, served))
 
     def among_others(self, served: Served, weights: Credit) -> tuple[Readings, Credit]:
         """Return readings (or the statistics made of them) judged with those they belong to, and their credit."""
         statistic = self._statistic()
         if statistic is not None:
             return self._of_population(statistic, served, weights)
-        readings = self._samples(served)
+        readings = self.one_by_one(served)
         groups = self._groups(served, weights)
         for allowance in _allowances(self.limit):
             readings = _allowed(readings, allowance, groups)
+        for axis in self._swept:
+            readings = self._if_swept(axis, readings, served, groups)
         return readings, weights
 
-    def _samples(self, served: Served) -> Readings:
-        """Return the readings as they are, before any of them is let pass."""
-        return self._within_validated_range(self._judged(self.limit, served))
+    @property
+    def _swept(self) -> tuple[str, ...]:
+        return swept_axes(self.limit, self.points, self.workspace.declared)
+
+    def _if_swept(self, axis: str, readings: Readings, served: Served, groups: Rows) -> Readings:
+        """Let the samples of a mask pass only where they sweep all of it."""
+        declared = self.workspace.declared
+        sweep = sweep_of(axis, self.limit, self.points, declared)
+        columns = limit_columns(
+            self.limit, self.points, self.conditions, served.record, served.point, declared
+        )
+        values, few = along(sweep, columns), np.zeros(readings.size, bool)
+        for rows in split(groups):
+            judged = rows[readings.verdict[rows] != Verdict.NONE]
+            few[rows] = not sweep.covered(int(served.point[rows[0]]), values[judged])
+        words = (
+            f"the mask over {axis.replace('_', ' ')} is not swept: readings must reach both ends of each piece and "
+            f"leave no gap above a tenth of it (or name {axis} in the conditions set, with its step)"
+        )
+        return with_too_few(readings, few, words)
 
     def _statistic(self) -> Statistic | None:
         tree = self.limit.tree
@@ -137,7 +160,7 @@ class Judging:
     def _groups(self, served: Served, weights: Credit) -> Rows:
         """Return for every pair (p,) the number of the group it belongs to: point, item, kin."""
         group = served.point.astype(np.intp)
-        if not self.together:
+        if not self.together and not self.requirement.provers.may_complete_each_other:
             group = group * len(self.records.items) + self.records.item[served.record]
         standing = self.records.standing[served.record].astype(np.intp)
         kin = ((weights.rank.astype(np.intp) * 2 + weights.counts) * 2 + weights.stale) * len(STANDINGS)

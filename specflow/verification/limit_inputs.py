@@ -58,6 +58,12 @@ def limit_columns(
     return Columns(len(record), numeric, text, units)
 
 
+def named_by_points(name: str, limit: Limit, points: Points, declared: Container[str] = ()) -> bool:
+    """Whether the conditions set requires values or a range of what a limit calls by that name."""
+    held = _held_as(tree_names(limit.tree), [points.columns_lo], declared).get(name, name)
+    return any(held in axis.names for axis in points.axes)
+
+
 def _held_as(names: Iterable[str], stated: Sequence[Columns], declared: Container[str]) -> dict[str, str]:
     """Return, for each name of a limit, the column it is held in: its own, else that of the dimension it spells.
 

