@@ -5,7 +5,8 @@ What may live here:
 - ``CALCULATORS`` the one list of all calculators, with inputs, outputs, units and source of each
 - ``arguments`` what they take and refuse; ``decibel`` ratios and constants; ``calculator`` an entry of the list
 - ``combination`` the laws that combine contributions of one kind, one a file
-- ``cascade`` the fused kernel for many points or trials; ``inverse`` one unknown solved, equal shares
+- ``cascade`` the fused kernel for many points or trials; ``inverse`` one unknown solved; ``apportionment``
+  shares of a target
 - every other module: the laws about the noun it is named for
 
 A calculator sees neither documents nor files. Figures are plain numbers in the unit that ends their name (``gain_db``,
@@ -18,6 +19,7 @@ from __future__ import annotations
 from specflow.calculators import (
     active_reflection,
     adjacent_channel,
+    apportionment,
     array_contributions,
     array_errors,
     array_power,
@@ -39,6 +41,7 @@ from specflow.calculators import (
     link,
     mismatch,
     mismatched_noise,
+    mixer_spurs,
     modulator,
     noise,
     noise_cascade,
@@ -83,6 +86,7 @@ CALCULATORS: tuple[Calculator, ...] = (
     Calculator.of(image_noise.image_noise_figure, "nf_db"),
     Calculator.of(image_noise.both_sidebands_noise_figure, "nf_db"),
     Calculator.of(intermodulation.im3_level, "im3_dbm"),
+    Calculator.of(intermodulation.ip3_for_product, "ip3_dbm"),
     Calculator.of(intermodulation.im2_level, "im2_dbm"),
     Calculator.of(intermodulation.im3_below_tone, "below_db"),
     Calculator.of(intermodulation.triple_beat_level, "beat_dbm"),
@@ -106,6 +110,7 @@ CALCULATORS: tuple[Calculator, ...] = (
     Calculator.of(cascade.cascade_slopes, "nf", "iip3", "ip1db"),
     Calculator.of(sensitivity.noise_floor, "noise_dbm"),
     Calculator.of(sensitivity.sensitivity, "sensitivity_dbm"),
+    Calculator.of(sensitivity.noise_figure_for_sensitivity, "nf_db"),
     Calculator.of(sensitivity.implied_snr, "snr_db"),
     Calculator.of(sensitivity.scaled_sensitivity, "sensitivity_dbm"),
     Calculator.of(dynamic_range.sfdr3, "sfdr_db"),
@@ -209,9 +214,9 @@ CALCULATORS: tuple[Calculator, ...] = (
     Calculator.of(frequency_plan.band_overlap, "hit", "band", "gap"),
     Calculator.of(frequency_plan.product_coefficients, "coefficients"),
     Calculator.of(frequency_plan.victim_hits, "hits"),
-    Calculator.of(frequency_plan.mixer_responses, "upper", "lower", "half_lower", "half_upper"),
-    Calculator.of(frequency_plan.spurious_inputs, "inputs"),
-    Calculator.of(frequency_plan.crossing_spurs, "pairs"),
+    Calculator.of(mixer_spurs.mixer_responses, "upper", "lower", "half_lower", "half_upper"),
+    Calculator.of(mixer_spurs.spurious_inputs, "inputs"),
+    Calculator.of(mixer_spurs.crossing_spurs, "pairs"),
     Calculator.of(reflection.reflection_from_return_loss, "reflection"),
     Calculator.of(reflection.return_loss, "return_loss_db"),
     Calculator.of(reflection.reflection_from_vswr, "reflection"),
@@ -233,11 +238,15 @@ CALCULATORS: tuple[Calculator, ...] = (
     Calculator.of(inverse.stage_noise_figure, "nf_db"),
     Calculator.of(inverse.stage_gain, "gain_db"),
     Calculator.of(inverse.stage_iip3, "iip3_dbm"),
+    Calculator.of(inverse.stage_iip2, "iip2_dbm"),
+    Calculator.of(inverse.stage_ip1db, "ip1db_dbm"),
     Calculator.of(inverse.stage_gain_ceiling, "gain_db"),
-    Calculator.of(inverse.equal_share_noise_figures, "nf_db"),
-    Calculator.of(inverse.equal_share_iip3, "iip3_dbm"),
     Calculator.of(inverse.left_of_power_sum, "level_db"),
     Calculator.of(inverse.left_of_root_sum_square, "error"),
+    Calculator.of(apportionment.equal_share_noise_figures, "nf_db"),
+    Calculator.of(apportionment.proportional_noise_figures, "nf_db"),
+    Calculator.of(apportionment.equal_share_iip3, "iip3_dbm"),
+    Calculator.of(apportionment.proportional_iip3, "iip3_dbm"),
 )
 
 __all__ = ["CALCULATORS", "Calculator"]

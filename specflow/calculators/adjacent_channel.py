@@ -7,7 +7,7 @@ from typing import Literal
 
 import numpy as np
 
-from specflow.calculators.arguments import Figures, Floats, above, chain, count, finite
+from specflow.calculators.arguments import Figures, Floats, above, chain, count, finite, intercept
 from specflow.calculators.decibel import decibels, power_total
 from specflow.errors import CalculationError
 
@@ -46,7 +46,7 @@ def aclr_from_oip3(
     >>> print(f"{aclr_from_oip3(27.0, 47.0, 3.84, 5.0):.3f}")
     49.457
     """
-    distance = finite(oip3_dbm, "oip3_dbm") - finite(output_dbm, "output_dbm")
+    distance = intercept(oip3_dbm, "oip3_dbm") - finite(output_dbm, "output_dbm")
     return 2.0 * distance + channel_gap_constant(occupied_width, spacing)
 
 
@@ -96,7 +96,7 @@ def in_band_distortion(output_dbm: Figures, oip3_dbm: Figures) -> Floats:
     >>> print(f"{in_band_distortion(27.0, 47.0):.3f}")
     -38.751
     """
-    distance = finite(output_dbm, "output_dbm") - finite(oip3_dbm, "oip3_dbm")
+    distance = finite(output_dbm, "output_dbm") - intercept(oip3_dbm, "oip3_dbm")
     return 2.0 * distance + 10.0 * math.log10(4.0 / 3.0)
 
 

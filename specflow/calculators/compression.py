@@ -6,7 +6,7 @@ import numpy as np
 
 from specflow.calculators.arguments import Figures, Floats, above, chain, count, finite, intercept
 from specflow.calculators.decibel import decibels, ratio, total
-from specflow.calculators.intercept_cascade import cascade_iip3
+from specflow.calculators.intercept_cascade import referred
 from specflow.errors import CalculationError
 
 
@@ -21,7 +21,7 @@ def cascade_ip1db(gain_db: Figures, ip1db_dbm: Figures) -> Floats:
     >>> print(f"{cascade_ip1db([15.0, 10.0], [0.0, 5.0]):.3f}")
     -10.414
     """
-    return cascade_iip3(gain_db, intercept(ip1db_dbm, "ip1db_dbm"))
+    return referred(gain_db, ip1db_dbm, 1.0, "ip1db_dbm")
 
 
 def output_p1db(ip1db_dbm: Figures, gain_db: Figures) -> Floats:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from specflow.calculators.arguments import Figures, Floats, finite
+from specflow.calculators.arguments import Figures, Floats, finite, intercept
 
 
 def sfdr3(ip3_dbm: Figures, noise_dbm: Figures, snr_db: Figures = 0.0) -> Floats:
@@ -16,7 +16,7 @@ def sfdr3(ip3_dbm: Figures, noise_dbm: Figures, snr_db: Figures = 0.0) -> Floats
     >>> print(f"{sfdr3(35.0, -47.43, 10.0):.2f} {sfdr3(20.0, -123.0):.2f}")
     44.95 95.33
     """
-    span = finite(ip3_dbm, "ip3_dbm") - finite(noise_dbm, "noise_dbm")
+    span = intercept(ip3_dbm, "ip3_dbm") - finite(noise_dbm, "noise_dbm")
     return span * (2.0 / 3.0) - finite(snr_db, "snr_db")
 
 
@@ -30,7 +30,7 @@ def sfdr2(ip2_dbm: Figures, noise_dbm: Figures, snr_db: Figures = 0.0) -> Floats
     >>> print(f"{sfdr2(50.0, -109.0):.1f}")
     79.5
     """
-    span = finite(ip2_dbm, "ip2_dbm") - finite(noise_dbm, "noise_dbm")
+    span = intercept(ip2_dbm, "ip2_dbm") - finite(noise_dbm, "noise_dbm")
     return span / 2.0 - finite(snr_db, "snr_db")
 
 
@@ -44,4 +44,4 @@ def linear_dynamic_range(p1db_dbm: Figures, noise_dbm: Figures) -> Floats:
     >>> print(f"{linear_dynamic_range(25.0, -47.4):.1f}")
     72.4
     """
-    return finite(p1db_dbm, "p1db_dbm") - finite(noise_dbm, "noise_dbm")
+    return intercept(p1db_dbm, "p1db_dbm") - finite(noise_dbm, "noise_dbm")

@@ -2,10 +2,9 @@
 
 from __future__ import annotations
 
-import math
-
 import numpy as np
 
+from specflow.calculators.adjacent_channel import in_band_distortion
 from specflow.calculators.arguments import Figures, Floats, above, at_least, chain, finite
 from specflow.calculators.decibel import amplitude, decibels, total
 
@@ -99,8 +98,7 @@ def evm_from_compression(output_dbm: Figures, oip3_dbm: Figures) -> Floats:
     >>> print(f"{evm_from_compression(27.0, 47.0):.4f}")
     1.1547
     """
-    distance = finite(output_dbm, "output_dbm") - finite(oip3_dbm, "oip3_dbm")
-    return evm_percent(2.0 * distance + 10.0 * math.log10(4.0 / 3.0))
+    return evm_percent(in_band_distortion(output_dbm, oip3_dbm))
 
 
 def combined_evm(evm_percent: Figures) -> Floats:

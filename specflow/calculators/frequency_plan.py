@@ -12,7 +12,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from specflow.calculators.arguments import Figures, Floats, above, at_least, count, finite
+from specflow.calculators.arguments import Figures, Floats, at_least, count, finite
 from specflow.errors import CalculationError
 
 Band = tuple[float, float]
@@ -130,7 +130,8 @@ def victim_hits(
 
     Formula: product bands of all coefficients against every victim; with ``widths`` the bands are those of carrier
     centres and each product is wider by half its width on both sides.
-    Valid: says where, not how strong.
+    Valid: says where, not how strong. For a mixer give the bands of oscillator and signal: the wanted product
+    (1, ±1) is then among the hits.
     Source: computed: band 3 up with n78 into band 3 down: f2 - f1, 3f1 - f2 and others up to order 5.
 
     >>> hits = victim_hits([(1710.0, 1785.0), (3300.0, 3800.0)], [(1805.0, 1880.0)], 5)
@@ -148,58 +149,6 @@ def victim_hits(
             if shared is not None:
                 found.append(Hit(coefficients, sum(map(abs, coefficients)), product, number, shared))
     return tuple(sorted(found, key=lambda hit: (hit.order, hit.victim, hit.coefficients)))
-
-
-def mixer_responses(lo: Figures, intermediate: Figures) -> tuple[Floats, Floats, Floats, Floats]:
-    """Return the inputs LO + IF, LO - IF (wanted and image, or the other way round) and the half-IF LO ± IF/2.
-
-    Formula: f = (n·LO ± IF)/m; the half-IF response has m = n = 2.
-    Valid: one conversion.
-    Source: computed: LO 2100, IF 341.75 MHz.
-
-    >>> print(*(f"{f:.3f}" for f in mixer_responses(2100.0, 341.75)))
-    2441.750 1758.250 1929.125 2270.875
-    """
-    centre, away = above(lo, 0.0, "lo"), above(intermediate, 0.0, "intermediate")
-    return centre + away, np.abs(centre - away), np.abs(centre - away / 2.0), centre + away / 2.0
-
-
-def spurious_inputs(lo: float, intermediate: float, highest_order: int) -> dict[tuple[int, int], Band]:
-    """Return for input harmonic m and LO harmonic n up to ``highest_order`` the two inputs that reach the IF.
-
-    Formula: f = (n·LO ± IF)/m, taken positive.
-    Valid: harmonic order in the mixer; levels need its spur table.
-    Source: computed: m = n = 2 is the half-IF.
-
-    >>> print(spurious_inputs(2100.0, 341.75, 2)[2, 2])
-    (1929.125, 2270.875)
-    """
-    centre, away = float(above(lo, 0.0, "lo")), float(above(intermediate, 0.0, "intermediate"))
-    count(highest_order, "highest_order")
-    orders = range(1, highest_order + 1)
-    return {(m, n): (abs(n * centre - away) / m, (n * centre + away) / m) for m in orders for n in orders}
-
-
-def crossing_spurs(
-    lo: float, intermediate: float, output: float, highest_lo: int, highest_if: int
-) -> tuple[tuple[int, int], ...]:
-    """Return (m, n) of up-converter products that fall on the wanted output, besides the wanted one.
-
-    Formula: |m·LO + n·IF| = RF, m from 0, |n| up to the highest order; a product and its negative are one.
-    Valid: frequencies equal within 1e-9 of the output.
-    Source: exhaustive search: LO 2000, IF 400, RF 2400.
-
-    >>> print(crossing_spurs(2000.0, 400.0, 2400.0, 3, 6))
-    ((0, 6), (2, -4))
-    """
-    wanted = float(above(output, 0.0, "output"))
-    above(lo, 0.0, "lo"), above(intermediate, 0.0, "intermediate")
-    found = []
-    for m, n in itertools.product(range(highest_lo + 1), range(-highest_if, highest_if + 1)):
-        meets = abs(abs(m * lo + n * intermediate) - wanted) <= 1e-9 * wanted
-        if meets and (m, abs(n)) != (1, 1) and (m > 0 or n > 0):
-            found.append((m, n))
-    return tuple(found)
 
 
 def _bands(bands: Sequence[Band]) -> Floats:

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from specflow.calculators.arguments import Figures, Floats, finite
+from specflow.calculators.arguments import Figures, Floats, finite, intercept
 from specflow.calculators.decibel import decibels, ratio
 from specflow.calculators.intercept_cascade import Law, cascade_iip3
 from specflow.calculators.noise_cascade import cascade_gain, cascade_noise_figure
@@ -36,8 +36,7 @@ def sndr_two_tone(input_dbm: Figures, noise_dbm: Figures, iip3_dbm: Figures) -> 
     4.047 47.05
     """
     level, noise = finite(input_dbm, "input_dbm"), finite(noise_dbm, "noise_dbm")
-    with np.errstate(over="ignore"):
-        product = ratio(3.0 * level - 2.0 * np.asarray(iip3_dbm, np.float64))
+    product = ratio(3.0 * level - 2.0 * intercept(iip3_dbm, "iip3_dbm"))
     return level - decibels(ratio(noise) + product)
 
 

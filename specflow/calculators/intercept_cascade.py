@@ -34,7 +34,7 @@ def cascade_iip3(gain_db: Figures, iip3_dbm: Figures, law: Law = "coherent") -> 
     >>> print(f"{cascade_iip3([20.0, -6.0], [2.0, 13.0], 'noncoherent') + 14.0:.3f}")
     6.966
     """
-    return _referred(gain_db, iip3_dbm, exponent(THIRD_ORDER, law), "iip3_dbm")
+    return referred(gain_db, iip3_dbm, exponent(THIRD_ORDER, law), "iip3_dbm")
 
 
 def cascade_iip2(gain_db: Figures, iip2_dbm: Figures, law: Law = "coherent") -> Floats:
@@ -48,7 +48,7 @@ def cascade_iip2(gain_db: Figures, iip2_dbm: Figures, law: Law = "coherent") -> 
     >>> print(f"{cascade_iip2(*stages):.3f} {cascade_iip2(*stages, 'noncoherent'):.3f}")
     21.929 26.297
     """
-    return _referred(gain_db, iip2_dbm, exponent(SECOND_ORDER, law), "iip2_dbm")
+    return referred(gain_db, iip2_dbm, exponent(SECOND_ORDER, law), "iip2_dbm")
 
 
 def cascade_oip3(gain_db: Figures, oip3_dbm: Figures, law: Law = "coherent") -> Floats:
@@ -128,6 +128,11 @@ def exponent(order: dict[str, float], law: str) -> float:
     return order[law]
 
 
+def referred(gain_db: Figures, ip_dbm: Figures, power: float, name: str) -> Floats:
+    """Return the input-referred figure of a chain in dBm by the law Σ (G_before/IP_i)^power."""
+    return -decibels(total(_parts(gain_db, ip_dbm, power, name))) / power
+
+
 def _parts(gain_db: Figures, ip_dbm: Figures, power: float, name: str) -> Floats:
     """Return (G_before/IP_i)^power for each position."""
     gain, ip = chain(gain_db=finite(gain_db, "gain_db"), **{name: intercept(ip_dbm, name)})
@@ -136,10 +141,6 @@ def _parts(gain_db: Figures, ip_dbm: Figures, power: float, name: str) -> Floats
     before -= ip
     before *= power * NEPER
     return np.exp(before, out=before)
-
-
-def _referred(gain_db: Figures, ip_dbm: Figures, power: float, name: str) -> Floats:
-    return -decibels(total(_parts(gain_db, ip_dbm, power, name))) / power
 
 
 def _shares(gain_db: Figures, ip_dbm: Figures, power: float, name: str) -> Floats:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 
-from specflow.calculators.arguments import Figures, Floats, count, finite, loss
+from specflow.calculators.arguments import Figures, Floats, count, finite, intercept, loss
 from specflow.calculators.decibel import decibels
 
 
@@ -19,7 +19,21 @@ def im3_level(double_dbm: Figures, single_dbm: Figures, ip3_dbm: Figures) -> Flo
     -60.0 -105.0
     """
     tones = 2.0 * finite(double_dbm, "double_dbm") + finite(single_dbm, "single_dbm")
-    return tones - 2.0 * finite(ip3_dbm, "ip3_dbm")
+    return tones - 2.0 * intercept(ip3_dbm, "ip3_dbm")
+
+
+def ip3_for_product(double_dbm: Figures, single_dbm: Figures, im3_dbm: Figures) -> Floats:
+    """Return the least third-order intercept in dBm that keeps a product at ``im3_dbm``; all at one port.
+
+    Formula: IP3 = (2·P_double + P_single - IM3)/2.
+    Valid: as the product.
+    Source: the product solved for the intercept; tones of -40 and -25 dBm, product -105 dBm.
+
+    >>> print(f"{ip3_for_product(-40.0, -25.0, -105.0):.1f}")
+    0.0
+    """
+    tones = 2.0 * finite(double_dbm, "double_dbm") + finite(single_dbm, "single_dbm")
+    return (tones - finite(im3_dbm, "im3_dbm")) / 2.0
 
 
 def im2_level(first_dbm: Figures, second_dbm: Figures, ip2_dbm: Figures) -> Floats:
@@ -32,7 +46,7 @@ def im2_level(first_dbm: Figures, second_dbm: Figures, ip2_dbm: Figures) -> Floa
     >>> print(f"{im2_level(-10.0, -10.0, 50.0):.1f}")
     -70.0
     """
-    return finite(first_dbm, "first_dbm") + finite(second_dbm, "second_dbm") - finite(ip2_dbm, "ip2_dbm")
+    return finite(first_dbm, "first_dbm") + finite(second_dbm, "second_dbm") - intercept(ip2_dbm, "ip2_dbm")
 
 
 def im3_below_tone(total_dbm: Figures, oip3_dbm: Figures, tones: Figures = 2) -> Floats:
@@ -46,7 +60,7 @@ def im3_below_tone(total_dbm: Figures, oip3_dbm: Figures, tones: Figures = 2) ->
     58.22
     """
     per_tone = finite(total_dbm, "total_dbm") - decibels(count(tones, "tones", 2))
-    return 2.0 * (finite(oip3_dbm, "oip3_dbm") - per_tone)
+    return 2.0 * (intercept(oip3_dbm, "oip3_dbm") - per_tone)
 
 
 def triple_beat_level(per_tone_dbm: Figures, ip3_dbm: Figures) -> Floats:
@@ -72,7 +86,7 @@ def second_harmonic_level(level_dbm: Figures, oip2_dbm: Figures) -> Floats:
     >>> print(f"{second_harmonic_level(-10.0, 50.0):.2f}")
     -76.02
     """
-    return 2.0 * finite(level_dbm, "level_dbm") - finite(oip2_dbm, "oip2_dbm") - 20.0 * math.log10(2.0)
+    return 2.0 * finite(level_dbm, "level_dbm") - intercept(oip2_dbm, "oip2_dbm") - 20.0 * math.log10(2.0)
 
 
 def third_harmonic_level(level_dbm: Figures, oip3_dbm: Figures) -> Floats:
@@ -85,7 +99,9 @@ def third_harmonic_level(level_dbm: Figures, oip3_dbm: Figures) -> Floats:
     >>> print(f"{third_harmonic_level(-10.0, 30.0):.4f}")
     -99.5424
     """
-    return 3.0 * finite(level_dbm, "level_dbm") - 2.0 * finite(oip3_dbm, "oip3_dbm") - 20.0 * math.log10(3.0)
+    return (
+        3.0 * finite(level_dbm, "level_dbm") - 2.0 * intercept(oip3_dbm, "oip3_dbm") - 20.0 * math.log10(3.0)
+    )
 
 
 def out_of_band_ip3(iip3_dbm: Figures, double_rejection_db: Figures, single_rejection_db: Figures) -> Floats:
@@ -101,4 +117,4 @@ def out_of_band_ip3(iip3_dbm: Figures, double_rejection_db: Figures, single_reje
     rejection = 2.0 * loss(double_rejection_db, "double_rejection_db") + loss(
         single_rejection_db, "single_rejection_db"
     )
-    return finite(iip3_dbm, "iip3_dbm") + rejection / 2.0
+    return intercept(iip3_dbm, "iip3_dbm") + rejection / 2.0

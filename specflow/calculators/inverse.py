@@ -1,4 +1,4 @@
-"""Backwards in closed form: the bound on one unknown so that a target is met, and equal shares over many.
+"""Backwards in closed form: the bound on one unknown so that a target is met.
 
 Positions count from 0; the figure of the unknown position is not looked at (none will do). A bound that nothing can
 meet is NaN beside the amount by which even an ideal part misses the target.
@@ -22,7 +22,7 @@ from specflow.calculators.arguments import (
     without,
 )
 from specflow.calculators.decibel import decibels, gain_before, ratio, total
-from specflow.calculators.intercept_cascade import THIRD_ORDER, Law, exponent
+from specflow.calculators.intercept_cascade import SECOND_ORDER, THIRD_ORDER, Law, exponent
 from specflow.errors import InfeasibleError
 
 
@@ -86,7 +86,13 @@ def stage_noise_figure(target_nf_db: Figures, gain_db: Figures, nf_db: Figures, 
     target, _, others = _noise_without(target_nf_db, gain_db, nf_db, position)
     factor = noise_factor_bound(target_nf_db, gain_db, nf_db, position)
     short = decibels(1.0 + total(others)) - decibels(target)
-    return _bound(f"noise figure of position {position}", factor >= 1.0, factor, short, at_most=True)
+    return _bound(
+        f"noise figure of position {position}",
+        factor >= 1.0 - 1e-12,  # a noiseless stage that just meets the target may come out a rounding below 1
+        np.maximum(factor, 1.0),
+        short,
+        at_most=True,
+    )
 
 
 def stage_gain(target_nf_db: Figures, gain_db: Figures, nf_db: Figures, position: int) -> Bound:
@@ -119,7 +125,7 @@ def stage_gain(target_nf_db: Figures, gain_db: Figures, nf_db: Figures, position
 def stage_iip3(
     target_iip3_dbm: Figures, gain_db: Figures, iip3_dbm: Figures, position: int, law: Law = "coherent"
 ) -> Bound:
-    """Return the least input intercept in dBm of one position; for IP1dB take the coherent law, which it shares.
+    """Return the least third-order input intercept in dBm of one position.
 
     Formula: IIP3_k >= G_before(k)/(1/IIP3_target - Σ others), every term to the power p (1 coherent, 2 not).
     Valid: as the cascade.
@@ -129,19 +135,39 @@ def stage_iip3(
     >>> print(f"{bound.for_all_points():.4f}")
     24.0804
     """
-    power, target = exponent(THIRD_ORDER, law), finite(target_iip3_dbm, "target_iip3_dbm")
-    unknown = without(iip3_dbm, position, "iip3_dbm", np.inf)
-    gain, ip = chain(gain_db=finite(gain_db, "gain_db"), iip3_dbm=intercept(unknown, "iip3_dbm"))
-    before = gain_before(gain) ** power
-    others = total(before * ratio(-power * ip))
-    left = ratio(-power * target) - others
-    least = np.divide(
-        before[position], left, out=np.zeros(np.broadcast(before[0], left).shape), where=left > 0.0
+    return _stage_intercept(
+        target_iip3_dbm, gain_db, iip3_dbm, position, exponent(THIRD_ORDER, law), "iip3_dbm"
     )
-    short = target + decibels(others) / power
-    return _bound(
-        f"intercept of position {position}", left > 0.0, least, short, at_most=False, scale=1.0 / power
+
+
+def stage_iip2(
+    target_iip2_dbm: Figures, gain_db: Figures, iip2_dbm: Figures, position: int, law: Law = "coherent"
+) -> Bound:
+    """Return the least second-order input intercept in dBm of one position.
+
+    Formula: IIP2_k^p >= G_before(k)^p/(1/IIP2_target^p - Σ others), p = 1/2 coherent, 1 non-coherent.
+    Valid: as the cascade.
+    Source: the cascade solved for one term; back-substituted in the tests. Two equal coherent shares of 6.02 dB:
+
+    >>> print(f"{stage_iip2(30.0, [10.0, 0.0], [36.0206, None], 1).for_all_points():.3f}")
+    46.021
+    """
+    return _stage_intercept(
+        target_iip2_dbm, gain_db, iip2_dbm, position, exponent(SECOND_ORDER, law), "iip2_dbm"
     )
+
+
+def stage_ip1db(target_ip1db_dbm: Figures, gain_db: Figures, ip1db_dbm: Figures, position: int) -> Bound:
+    """Return the least input compression point in dBm of one position: as approximate as the cascade's law.
+
+    Formula: IP1_k >= G_before(k)/(1/IP1_target - Σ others).
+    Valid: no better than about 0.5 dB.
+    Source: the cascade solved for one term; back-substituted in the tests. Two equal shares of 3.01 dB:
+
+    >>> print(f"{stage_ip1db(-20.0, [10.0, 0.0], [-16.9897, None], 1).for_all_points():.3f}")
+    -6.990
+    """
+    return _stage_intercept(target_ip1db_dbm, gain_db, ip1db_dbm, position, 1.0, "ip1db_dbm")
 
 
 def stage_gain_ceiling(
@@ -168,55 +194,6 @@ def stage_gain_ceiling(
     most = np.divide(left, behind, out=np.full(np.broadcast(left, behind).shape, np.inf), where=behind > 0.0)
     short = target + decibels(upto) / power
     return _bound(f"gain of position {position}", left > 0.0, most, short, at_most=True, scale=1.0 / power)
-
-
-def equal_share_noise_figures(
-    target_nf_db: Figures, gain_db: Figures, fixed_nf_db: Figures | None = None
-) -> Floats:
-    """Return noise figures in dB of all positions that share the target's excess noise equally.
-
-    Formula: F_i = 1 + G_before(i)·R/n, R = F_target - 1 less the excess noise of the fixed positions.
-    Valid: ``fixed_nf_db`` holds what is not to be shared (passive positions), none elsewhere; they come back as given.
-    A passive position's share may lie below its loss: fix it.
-    Source: Friis with equal terms; back-substituted in the tests.
-
-    >>> print(np.round(equal_share_noise_figures(3.0, [18.0, -2.5, -7.0, 20.0]), 3))
-    [ 0.965 12.227  9.925  4.411]
-    """
-    gain = chain(gain_db=finite(gain_db, "gain_db"))[0]
-    given = np.full(gain.shape[0], np.inf) if fixed_nf_db is None else intercept(fixed_nf_db, "fixed_nf_db")
-    gain, fixed = chain(gain_db=gain, fixed_nf_db=given)
-    shared = np.isinf(fixed)
-    before = gain_before(gain)
-    taken = total((ratio(noise_figure(np.where(shared, 0.0, fixed), "fixed_nf_db")) - 1.0) / before)
-    left = ratio(noise_figure(target_nf_db, "target_nf_db")) - 1.0 - taken
-    if np.any(left < 0.0):
-        short = np.max(decibels(1.0 + taken) - noise_figure(target_nf_db, "target_nf_db"))
-        raise InfeasibleError(
-            f"equal shares: infeasible, and short by {float(short):.3g} dB",
-            hint="the fixed positions alone exceed the target",
-        )
-    with np.errstate(invalid="ignore"):
-        share = decibels(1.0 + before * left / np.maximum(total(shared), 1))
-    return np.where(shared, share, fixed)
-
-
-def equal_share_iip3(target_iip3_dbm: Figures, gain_db: Figures, law: Law = "coherent") -> Floats:
-    """Return input intercepts in dBm of all positions that share the target's distortion equally.
-
-    Formula: target + G_before(i) + 10·log n (coherent) or + 5·log n (non-coherent).
-    Valid: as the cascade.
-    Source: the cascade with equal terms; back-substituted in the tests.
-
-    >>> print(np.round(equal_share_iip3(-10.0, [18.0, -2.5, -7.0, 20.0], "noncoherent"), 3))
-    [-6.99 11.01  8.51  1.51]
-    """
-    gain = chain(gain_db=finite(gain_db, "gain_db"))[0]
-    before = np.zeros_like(gain)
-    before[1:] = np.cumsum(gain[:-1], axis=0)
-    each = 10.0 * np.log10(len(gain)) / exponent(THIRD_ORDER, law)
-    shared: Floats = finite(target_iip3_dbm, "target_iip3_dbm") + before + each
-    return shared
 
 
 def left_of_power_sum(target_db: Figures, others_db: Figures) -> Bound:
@@ -263,6 +240,23 @@ def _noise_without(
     )
     before = gain_before(gain)
     return ratio(noise_figure(target_nf_db, "target_nf_db")), before, (ratio(nf) - 1.0) / before
+
+
+def _stage_intercept(
+    target_dbm: Figures, gain_db: Figures, ip_dbm: Figures, position: int, power: float, name: str
+) -> Bound:
+    """Return the least figure of one position under the law Σ (G_before/IP_i)^power."""
+    target = finite(target_dbm, f"target_{name}")
+    unknown = without(ip_dbm, position, name, np.inf)
+    gain, ip = chain(gain_db=finite(gain_db, "gain_db"), **{name: intercept(unknown, name)})
+    before = gain_before(gain) ** power
+    others = total(before * ratio(-power * ip))
+    left = ratio(-power * target) - others
+    shape = np.broadcast(before[position], left).shape
+    least = np.divide(before[position], left, out=np.zeros(shape), where=left > 0.0)
+    short = target + decibels(others) / power
+    what = f"{name.partition('_')[0].upper()} of position {position}"
+    return _bound(what, left > 0.0, least, short, at_most=False, scale=1.0 / power)
 
 
 def _bound(

@@ -2,8 +2,11 @@
 
 from __future__ import annotations
 
+import numpy as np
+
 from specflow.calculators.arguments import Figures, Floats, above, finite, noise_figure
 from specflow.calculators.decibel import THERMAL_DENSITY, decibels
+from specflow.errors import InfeasibleError
 
 
 def noise_floor(bandwidth_hz: Figures, nf_db: Figures, density_dbm_hz: Figures = THERMAL_DENSITY) -> Floats:
@@ -38,6 +41,32 @@ def sensitivity(
     """
     above_floor = finite(snr_db, "snr_db") + finite(implementation_loss_db, "implementation_loss_db")
     return noise_floor(bandwidth_hz, nf_db, density_dbm_hz) + above_floor
+
+
+def noise_figure_for_sensitivity(
+    sensitivity_dbm: Figures,
+    bandwidth_hz: Figures,
+    snr_db: Figures,
+    implementation_loss_db: Figures = 0.0,
+    density_dbm_hz: Figures = THERMAL_DENSITY,
+) -> Floats:
+    """Return the highest noise figure in dB that meets a sensitivity; refused below 0 dB, saying by how much.
+
+    Formula: sensitivity - (kT0 + 10·log B + SNR + implementation loss).
+    Valid: source at 290 K.
+    Source: the sensitivity solved for the noise figure; courseware figures above taken back.
+
+    >>> print(f"{noise_figure_for_sensitivity(-105.59, 200e3, 12.0, density_dbm_hz=-174.0):.2f}")
+    3.40
+    """
+    ideal = sensitivity(bandwidth_hz, 0.0, snr_db, implementation_loss_db, density_dbm_hz)
+    left = finite(sensitivity_dbm, "sensitivity_dbm") - ideal
+    if np.any(left < 0.0):
+        raise InfeasibleError(
+            f"noise figure: infeasible, and short by {-float(np.min(left)):.3g} dB",
+            hint="even a noiseless receiver misses the sensitivity; relax it, the SNR or the bandwidth",
+        )
+    return left
 
 
 def implied_snr(

@@ -15,7 +15,8 @@ skrf = pytest.importorskip("skrf")
 
 
 def a_matrix(drawn: np.random.Generator, ports: int, scale: float) -> Complexes:
-    return scale * (drawn.uniform(-1, 1, (ports, ports)) + 1j * drawn.uniform(-1, 1, (ports, ports)))
+    parts = drawn.uniform(-1, 1, (ports, ports, 2))
+    return np.asarray(scale * (parts @ np.array([1.0, 1j])), np.complex128)
 
 
 def a_network(

@@ -81,9 +81,9 @@ def test_fused_results_and_slopes_equal_the_single_laws(law: Law) -> None:
 
 def test_a_figure_with_fewer_axes_holds_for_all_points() -> None:
     gain, nf, iip3, ip1db = chains(4, 9)
-    spread = [np.repeat(figure[:, :1], 9, axis=1) for figure in (nf, iip3)]
+    wide_nf, wide_iip3 = (np.repeat(figure[:, :1], 9, axis=1) for figure in (nf, iip3))
     mixed = cascade_results(gain, nf[:, 0], iip3[:, :1], ip1db)
-    full = cascade_results(gain, *spread, ip1db)
+    full = cascade_results(gain, wide_nf, wide_iip3, ip1db)
     np.testing.assert_allclose(mixed.nf_db, full.nf_db, atol=1e-12)
     np.testing.assert_allclose(mixed.iip3_dbm, full.iip3_dbm, atol=1e-12)
 
@@ -129,10 +129,10 @@ def test_slopes_agree_with_finite_differences(law: Law) -> None:
     def difference(which: int, position: int, result: str) -> Floats:
         ends = []
         for step in (STEP, -STEP):
-            moved = [figure.copy() for figure in figures]
-            moved[which][position] += step
-            ends.append(getattr(cascade_results(*moved, law), result))
-        return (ends[0] - ends[1]) / (2 * STEP)
+            gain, nf, iip3, ip1db = (figure.copy() for figure in figures)
+            (gain, nf, iip3, ip1db)[which][position] += step
+            ends.append(getattr(cascade_results(gain, nf, iip3, ip1db, law), result))
+        return np.asarray((ends[0] - ends[1]) / (2 * STEP))
 
     for k in range(6):
         for own, name, slope in (

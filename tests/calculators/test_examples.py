@@ -16,7 +16,7 @@ from specflow.calculators import CALCULATORS, Calculator
 from specflow.calculators.calculator import Figure
 
 FOUNDATIONS = {"arguments", "calculator", "decibel", "operands"}
-NOT_LAWS = {"exponent"}
+NOT_LAWS = {"exponent", "referred"}
 """Public functions that laws share and that are no calculators of their own."""
 
 

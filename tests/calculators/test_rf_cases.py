@@ -20,6 +20,7 @@ import pytest
 from specflow.calculators import (
     active_reflection,
     adjacent_channel,
+    apportionment,
     array_errors,
     array_power,
     blocking,
@@ -39,6 +40,7 @@ from specflow.calculators import (
     link,
     mismatch,
     mismatched_noise,
+    mixer_spurs,
     modulator,
     noise,
     noise_cascade,
@@ -202,8 +204,8 @@ def _interference(i: Inputs) -> Answer:
 
 
 def _agc(i: Inputs) -> Answer:
-    per_state = [np.array(figure)[:, None] for figure in (gains(i), column(i, "nf_db"), input_ip3(i))]
-    states = gain_states.gain_states(*per_state, i["bandwidth_hz"], [i["input_dbm"]], [i["input_dbm"]])
+    gain, nf, iip3 = (np.array(figure)[:, None] for figure in (gains(i), column(i, "nf_db"), input_ip3(i)))
+    states = gain_states.gain_states(gain, nf, iip3, i["bandwidth_hz"], [i["input_dbm"]], [i["input_dbm"]])
     floor = sensitivity.noise_floor(i["bandwidth_hz"], states.nf_db)
     return {
         "nf_db": states.nf_db[0],
@@ -344,13 +346,13 @@ def _band_hit(i: Inputs) -> Answer:
 
 
 def _mixer(i: Inputs) -> Answer:
-    upper, lower, *half = frequency_plan.mixer_responses(i["lo_mhz"], i["if_mhz"])
+    upper, lower, *half = mixer_spurs.mixer_responses(i["lo_mhz"], i["if_mhz"])
     return {"wanted_high_side_rf_mhz": upper, "image_mhz": lower, "half_if_mhz": half}
 
 
 def _crossing(i: Inputs) -> Answer:
     figures = (i["lo_mhz"], i["if_mhz"], i["rf_mhz"], i["max_lo_order"], i["max_if_order"])
-    return {"mn_pairs": [list(pair) for pair in frequency_plan.crossing_spurs(*figures)]}
+    return {"mn_pairs": [list(pair) for pair in mixer_spurs.crossing_spurs(*figures)]}
 
 
 def _im2_desense(i: Inputs) -> Answer:
@@ -686,10 +688,10 @@ METHODS: dict[str, Callable[[Inputs], Answer]] = {
     "inverse_stage_gain": _inverse_gain,
     "inverse_stage_iip3": _inverse_iip3,
     "equal_apportionment_nf": lambda i: {
-        "nf_db": inverse.equal_share_noise_figures(i["target_nf_db"], i["gains_db"])
+        "nf_db": apportionment.equal_share_noise_figures(i["target_nf_db"], i["gains_db"])
     },
     "equal_apportionment_iip3": lambda i: {
-        "iip3_dbm": inverse.equal_share_iip3(i["target_iip3_dbm"], i["gains_db"], i["rule"])
+        "iip3_dbm": apportionment.equal_share_iip3(i["target_iip3_dbm"], i["gains_db"], i["rule"])
     },
     "iip3_sensitivities": _slopes_iip3,
 }

@@ -222,8 +222,8 @@ def test_second_stage_correction_takes_a_cascade_back() -> None:
 
 def test_gain_states_are_never_mixed() -> None:
     high, low = ([20.0, 10.0], [1.0, 8.0], [-10.0, 0.0]), ([2.0, 10.0], [9.0, 8.0], [10.0, 0.0])
-    per_state = [np.array(pair).T for pair in zip(high, low, strict=True)]
-    states = gain_states(*per_state, 1e6, [-100.0, -60.0], [-50.0, -20.0])
+    gain, nf, iip3 = (np.array(pair).T for pair in zip(high, low, strict=True))
+    states = gain_states(gain, nf, iip3, 1e6, [-100.0, -60.0], [-50.0, -20.0])
     for place, figures in enumerate((high, low)):
         assert states.nf_db[place] == cascade_noise_figure(figures[0], figures[1])
     assert states.nf_db[0] < states.nf_db[1] and states.iip3_dbm[0] < states.iip3_dbm[1]
