@@ -153,7 +153,7 @@ def _unused(file: GridFile, layout: str, mapping_name: str) -> Finding:
 
 
 def _outside(grid: Grid, rows: Sequence[int]) -> Finding:
-    message = f"{len(rows)} rows with numbers belong to no table, the first is row {rows[0]}"
+    message = f"{len(rows)} rows of numbers belong to no table, the first is row {rows[0]}"
     remedy = "give them headers, or delete them"
     return _finding(grid, message, Severity.ERROR, remedy).model_copy(update={"rule": "attach-rows-outside"})
 

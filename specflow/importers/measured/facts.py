@@ -20,6 +20,7 @@ class Fact:
     key: str
     value: str
     cell: str
+    row: int
 
 
 @dataclass(frozen=True, slots=True)
@@ -52,7 +53,7 @@ def read_across(grid: Grid, key_row: int, value_row: int) -> tuple[Fact, ...]:
         value = grid.value(value_row, column)
         if isinstance(key, str) and not is_blank(key) and not is_blank(value):
             text = _value_text(grid, value_row, column, value, key)
-            facts.append(Fact(" ".join(key.split()).rstrip(":"), text, address(value_row, column)))
+            facts.append(Fact(" ".join(key.split()).rstrip(":"), text, address(value_row, column), value_row))
     return tuple(facts)
 
 
@@ -73,7 +74,7 @@ def _facts(grid: Grid, row: int, cells: list[tuple[int, Value]]) -> Iterator[Fac
             continue
         pair = _PAIR.match(value)
         if pair and pair["value"]:
-            yield Fact(pair["key"].strip(), " ".join(pair["value"].split()), address(row, column))
+            yield Fact(pair["key"].strip(), " ".join(pair["value"].split()), address(row, column), row)
         elif place < len(cells) and (pair or _is_key(value, cells[place][1], len(cells))):
             key = pair["key"].strip() if pair else value.strip()
             there, beside = cells[place]
@@ -82,7 +83,7 @@ def _facts(grid: Grid, row: int, cells: list[tuple[int, Value]]) -> Iterator[Fac
             if looks_numeric(text) and place < len(cells) and known_unit(str(cells[place][1])) is not None:
                 text = f"{text} {cells[place][1]}"
                 place += 1
-            yield Fact(key, text, address(row, there))
+            yield Fact(key, text, address(row, there), row)
 
 
 def _is_key(text: str, beside: Value, cells: int) -> bool:

@@ -11,7 +11,8 @@ from specflow.parameters.headers import looks_like_unit, split_header
 from specflow.units import Unit, parse_unit
 
 _BRACKET = re.compile(r"\(([^()]*)\)|\[([^\[\]]*)\]|\{([^{}]*)\}")
-_COVERAGE = re.compile(r"[,;]?\s*[(\[]?\s*\bk\s*=\s*(?P<k>[0-9]+(?:[.,][0-9]+)?)\s*[)\]]?", re.IGNORECASE)
+_FACTOR = r"k\s*=\s*(?:[0-9]+(?:[.,][0-9]+)?)"
+_COVERAGE = re.compile(rf"[(\[]\s*{_FACTOR}\s*[)\]]|[,;]?\s*\b{_FACTOR}", re.IGNORECASE)
 _PLACE = re.compile(r"\s*@\s*(?P<place>.+)$")
 _TAIL = re.compile(r"^(?P<name>.*\S)\s+(?P<unit>°\s?[CFK]|[^\s\w]*d[Bb]\S*|\S*Hz|\S*[WVA]|%|deg\w*|K|ppm)$")
 _WORDS_NOT_UNITS = frozenset(
@@ -57,7 +58,7 @@ def read_header(text: str) -> HeaderText:
     whole = " ".join(text.split())
     coverage = _COVERAGE.search(whole)
     rest = _COVERAGE.sub(" ", whole).strip() if coverage else whole
-    k = float(coverage["k"].replace(",", ".")) if coverage else None
+    k = float(re.sub(r"[^0-9.,]", "", coverage[0].split("=")[1]).replace(",", ".")) if coverage else None
     rest, unit, odd, bracketed = _without_brackets(rest)
     place = _PLACE.search(rest)
     found = place["place"].strip() if place else ""
@@ -66,7 +67,7 @@ def read_header(text: str) -> HeaderText:
         found, unit = _without_tail(found) if not _starts_with_number(found) else (found, "")
     if not unit and not odd:
         rest, unit = _without_tail(rest)
-    return HeaderText(whole, rest.strip(" ,;:/-"), unit, odd, found, k, bracketed)
+    return HeaderText(whole, rest.strip(" ,;:/-."), unit, odd, found, k, bracketed)
 
 
 def known_unit(text: str) -> Unit | None:

@@ -11,7 +11,7 @@ from specflow.importers.measured.layout import layout_key
 from specflow.importers.measured.mapping import LayoutMapping, read_mappings
 from specflow.importers.measured.names import NAMES, canonical
 from specflow.importers.measured.stated import holds_below
-from specflow.importers.measured.tables import FoundTable, cut_table, find_tables, rows_outside
+from specflow.importers.measured.tables import FoundTable, cut_table, find_tables, rows_of_numbers
 from specflow.importers.readers import Grid
 from specflow.model.evidence import TableMapping
 
@@ -41,7 +41,7 @@ class GivenMappings:
 
 @dataclass
 class LocatedTables:
-    """What was found on one sheet; ``skipped`` says what is not read, ``outside`` are rows with numbers in no table."""
+    """What was found on one sheet; ``skipped`` says what is not read, ``outside`` are rows of numbers in no table."""
 
     tables: list[LocatedTable] = field(default_factory=list)
     skipped: list[str] = field(default_factory=list)
@@ -63,6 +63,10 @@ def locate_tables(grid: Grid, context: Context, given: GivenMappings) -> Located
         mapping, source = _mapping_for(key, given, context)
         preamble = read_preamble(grid, table.top, table.header_row)
         own = (*preamble.facts, *above)
+        told = {fact.row for fact in preamble.facts}
+        located.outside += [
+            row for row in rows_of_numbers(grid, table.top, table.header_row) if row not in told
+        ]
         if mapping.skip:
             located.skipped.append(f"{where}, {table.place}: {source} says skip")
         elif not source and _speaks_of_tables_below(table):
@@ -76,7 +80,6 @@ def locate_tables(grid: Grid, context: Context, given: GivenMappings) -> Located
             located.tables.append(LocatedTable(table, key, mapping, source, preamble, sheet_facts))
         sheet_facts = (*filter(holds_below, own), *sheet_facts)
         above = ()
-    located.outside += rows_outside(grid, found)
     return located
 
 

@@ -20,7 +20,7 @@ _NAMES: dict[Role, tuple[str, ...]] = {
     ),
     Role.INDEX: (
         "# | no | no. | nr | nr. | run | run no | run # | index | idx | row | point | pt | point no | meas no",
-        "measurement no | seq | sequence | line | record | record no | test no | meas # | test # | step",
+        "measurement no | seq | sequence | line | record | record no | test no | meas # | test # | step | page",
     ),
     Role.STATED_VERDICT: (
         "pass/fail | pass / fail | p/f | verdict | result | pass | fail | ok | ok? | status | compliant",
@@ -46,9 +46,7 @@ _ROLES = {
 }
 _LIMIT = re.compile(r"\b(?:limits?|spec|specification|lsl|usl|threshold|requirement|target|goal)\b")
 _MARGIN = re.compile(r"\b(?:margin|headroom)\b")
-_WORDS = (
-    r"(?:expanded |standard |meas\w*\.? )?unc(?:ert(?:ainty|\.)?|\.)?|std\.? unc\w*|measurement uncertainty"
-)
+_WORDS = r"(?:expanded |standard |meas\w*\.? )?unc(?:ert(?:ainty)?)?|std\.? unc\w*"
 _UNCERTAINTY = re.compile(
     rf"^(?:(?P<of>.*?)[\s_]*)(?:\b(?P<letter>u)|(?P<sign>±|\+/-)|\b(?P<word>{_WORDS}))\b"
     r"\s*(?:(?:of|for)\s+|\(\s*)?(?P<of_after>[^()]*)\)?$",
@@ -89,11 +87,11 @@ def uncertainty_of(parts: HeaderText) -> UncertaintyWords | None:
     name = parts.name or parts.text
     sign = _BARE_SIGN.match(name)
     if sign is not None:
-        return UncertaintyWords(sign["of"].strip(" ,;:-"), False, True)
+        return UncertaintyWords(sign["of"].strip(" ,;:-."), False, True)
     found = _UNCERTAINTY.match(name)
     if found is None or (found["letter"] and found["of"] and found["of_after"]):
         return None
-    of = found["of"].strip(" ,;:-") or found["of_after"].strip(" ,;:-")
+    of = found["of"].strip(" ,;:-.") or found["of_after"].strip(" ,;:-.")
     if not of and parts.bracketed:
         of = parts.bracketed[0]
     word = (found["word"] or "").casefold()

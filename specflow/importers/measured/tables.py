@@ -24,6 +24,9 @@ _LIKE_A_READING = re.compile(r"^[<>≤≥=~+\-−±]*\s*[.,]?[0-9]")
 _NUMBER = r"[<>≤≥~±+\-−]*\s*[0-9][0-9.,]*(?:[eE][+\-]?[0-9]+)?"
 _ONE_READING = re.compile(rf"^{_NUMBER}(?:\s*(?:±|\+/-|to|\.\.+|…)\s*{_NUMBER})?\s*[^\s0-9]{{0,6}}$")
 _LOOK_AHEAD = 5
+_SHARE_OF_WORDS = (
+    0.75  # a row of words in the place of readings ("N/A") fills nearly all cells, a signature does not
+)
 _NO_UNIT = ("", "-", "—", "–", "n/a")
 
 
@@ -289,26 +292,31 @@ class _Body:
                 break
             data[place] = action == "data"
         data[end:] = False
-        stop = self._without_rest(data, written, filled, end)
+        stop = self._without_rest(data, written, filled, numeric, end)
         return data, self._first + stop
 
-    def _without_rest(self, data: Flags, written: Flags, filled: Rows, end: int) -> int:
+    def _without_rest(self, data: Flags, written: Flags, filled: Rows, numeric: Rows, end: int) -> int:
         """Leave out, below a blank row at the end, blocks of rows that fill less than half of the usual cells.
 
-        What is said there (signatures, or the key–value rows of the next table) is no data of this one.
+        What is said there (signatures, or the key–value rows of the next table) is no data of this one. Where no table
+        follows, rows with numbers are kept: they are rejected one by one, and not passed over.
         """
         if not data.any():
             return end
-        usual = float(np.median(filled[data]))
+        is_followed = end < len(data)
         starts = np.flatnonzero(written[1:end] & ~written[: max(end - 1, 0)]) + 1
+        starts = starts[starts > int(np.argmax(data))]
+        first_block = slice(0, int(starts[0]) if len(starts) else end)
+        usual = float(np.median(filled[first_block][data[first_block]]))
+        with_numbers = (numeric > 0) & ((filled >= usual / 2) | (not is_followed))
+        holds = with_numbers | (filled >= _SHARE_OF_WORDS * usual)
         stop = end
         for start in reversed(starts.tolist()):
             block = slice(start, stop)
-            if (data[block] & (filled[block] >= usual / 2)).any():
+            if (data[block] & holds[block]).any():
                 break
             data[block] = False
             stop = start
-        is_followed = end < len(data)
         return int(np.flatnonzero(data)[-1]) + 1 if is_followed else stop
 
     def _row_of_words(self, place: int, filled: int, beside: int) -> str:
@@ -328,9 +336,9 @@ class _Body:
         return "data"
 
 
-def rows_outside(grid: Grid, tables: tuple[FoundTable, ...]) -> Iterator[int]:
-    """Give the rows with numbers that stand below the last table and belong to none."""
-    start = max((table.stop_row for table in tables), default=grid.first_row)
-    for row in range(start, grid.last_row + 1):
-        if any(_is_reading(value) for value in grid.rows[row - grid.first_row]):
+def rows_of_numbers(grid: Grid, top: int, stop: int) -> Iterator[int]:
+    """Give the rows from ``top`` up to, not including, ``stop`` that hold several numbers."""
+    for row in range(top, stop):
+        cells = grid.rows[row - grid.first_row]
+        if row not in grid.comment_rows and sum(map(_is_reading, cells)) > 1:
             yield row

@@ -2,9 +2,12 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 from specflow.importers.sheets.intake import Intake
 from specflow.importers.sheets.row import SheetRow
-from specflow.importers.sheets.sheet import MARK_COLUMN, Sheet, each_row
+from specflow.importers.sheets.sheet import MARK_COLUMN, Sheet
+from specflow.model.base import code_key
 from specflow.model.block import HardwareType, Tier
 from specflow.model.requirement import Activity, Method, Requirement, Stage
 from specflow.model.sheet import SheetColumn, SheetLayout
@@ -118,7 +121,7 @@ def build(row: SheetRow, intake: Intake) -> Activity | None:
         Activity,
         id=row.subject,
         requirement=spelled,
-        requirement_revision=requirement.revision if requirement else 1,
+        requirement_revision=_planned_for(row, requirement, intake) if requirement else 1,
         method=row.choice("method", Method, Method.TEST),
         stage=row.choice("stage", Stage, Stage.QUALIFICATION),
         tier=row.choice("tier", Tier, requirement.tier if requirement else Tier.SYSTEM),
@@ -135,4 +138,28 @@ def build(row: SheetRow, intake: Intake) -> Activity | None:
     )
 
 
-SHEET = Sheet(LAYOUT, Activity, each_row(build), identify)
+def _planned_for(row: SheetRow, requirement: Requirement, intake: Intake) -> int:
+    """Return the revision of the requirement that the row is planned for.
+
+    A new plan is for the requirement as it will be; one that stands was made for what is stored, and is to be looked
+    through and loaded again when the same workbook changes its requirement.
+    """
+    known = intake.snapshot.find(Activity, row.subject)
+    stored = intake.snapshot.find(Requirement, requirement.id)
+    if known is None or stored is None or code_key(known.requirement) != code_key(requirement.id):
+        return intake.due_revision(requirement)
+    return stored.revision
+
+
+def read(rows: Sequence[SheetRow], intake: Intake) -> None:
+    """Add one activity a row. One that its requirement's own row had planned is now planned here."""
+    for row in rows:
+        activity = build(row, intake)
+        if activity is None or not row.sound:
+            continue
+        known = intake.snapshot.find(Activity, activity.id)
+        taken_over = {"planned"} if known is not None and known.shorthand else set()
+        intake.add(activity, row.stated() | taken_over | {"requirement_revision", "shorthand"})
+
+
+SHEET = Sheet(LAYOUT, Activity, read, identify)

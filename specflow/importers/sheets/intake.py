@@ -10,13 +10,14 @@ from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, field
 from typing import TypeVar, cast
 
+from specflow.changes import due_revision
 from specflow.importers.sheets.row import SheetRow
 from specflow.importers.sheets.spelling import near
 from specflow.model.base import Document, code_key
 from specflow.model.finding import Finding, Severity
 from specflow.model.nouns import NOUN_BY_DOCUMENT
 from specflow.model.parameter import Parameter
-from specflow.model.requirement import Activity
+from specflow.model.requirement import Activity, Requirement
 from specflow.model.snapshot import Snapshot
 from specflow.parameters import Dictionary
 
@@ -31,7 +32,8 @@ class Intake:
 
     ``dictionary`` grows by the workbook's own parameters. ``documents`` maps noun → code key → document, ``codes``
     noun → code key → the code as written, its row and its column. ``shorthand`` holds, by requirement key, the
-    activities that the requirement's own row plans.
+    activities that the requirement's own row plans (none where its column Method is empty). ``removals`` are stored
+    documents that the workbook no longer wants.
     """
 
     snapshot: Snapshot
@@ -41,6 +43,7 @@ class Intake:
     documents: dict[str, dict[str, Document]] = field(default_factory=dict)
     codes: dict[str, dict[str, tuple[str, SheetRow, str]]] = field(default_factory=dict)
     shorthand: dict[str, list[Activity]] = field(default_factory=dict)
+    removals: list[Document] = field(default_factory=list)
     _nearest: dict[tuple[str, str], str] = field(default_factory=dict)
 
     def register(
@@ -66,12 +69,18 @@ class Intake:
         )
 
     def free_code(self, kind: type[Document], stem: str) -> str:
-        """Return the first of stem1, stem2 ... that this workbook does not give yet."""
-        codes = self.codes.get(NOUN_BY_DOCUMENT[kind].name, {})
+        """Return the first of stem1, stem2 ... that this workbook does not give yet and that was never removed."""
+        noun = NOUN_BY_DOCUMENT[kind].name
+        codes, gone = self.codes.get(noun, {}), self.snapshot.removed.get(noun, frozenset())
         number = 1
-        while code_key(f"{stem}{number}") in codes:
+        while (key := code_key(f"{stem}{number}")) in codes or key in gone:
             number += 1
         return f"{stem}{number}"
+
+    def due_revision(self, requirement: Requirement) -> int:
+        """Return the revision that a requirement has once the workbook is accepted."""
+        before = self.snapshot.find(Requirement, requirement.id)
+        return due_revision(before, requirement) or requirement.revision
 
     def extend_dictionary(self) -> None:
         """Let the dictionary know the workbook's own parameters."""

@@ -222,7 +222,8 @@ _HOW_PROVED = (
         title="Method",
         aliases=("Verification method", "Methods"),
         field="",
-        guidance="Plans the verification without the sheet Activities. Several: separated by commas.",
+        guidance="Plans the verification without the sheet Activities. Several: separated by commas. A method taken "
+        "out takes its activity with it.",
         choices=tuple(Method),
         open_choices=True,
         example="test",

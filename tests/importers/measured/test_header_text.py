@@ -37,7 +37,7 @@ def test_what_follows_the_at_sign_is_a_place() -> None:
 
 
 def test_a_coverage_factor_is_found_wherever_it_stands() -> None:
-    for text in ("U (dB), k=2", "U (k=2) [dB]", "U, k = 2, (dB)"):
+    for text in ("U (dB), k=2", "U (k=2) [dB]", "U, k = 2, (dB)", "U (dB, k=2)"):
         parts = read_header(text)
         assert (parts.name, parts.unit, parts.k) == ("U", "dB", 2.0), text
 

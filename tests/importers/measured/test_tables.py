@@ -86,12 +86,25 @@ def test_numbers_without_a_header_are_asked_about(tmp_path: Path) -> None:
     assert "column C: numbers without a header" in questions(one_table(book(tmp_path / "a.xlsx", rows)))
 
 
-def test_numbers_below_a_table_that_belong_to_none_are_an_error(tmp_path: Path) -> None:
-    rows = [["f (GHz)", "Gain (dB)", "Vdd (V)", "Mode"], [27.5, 20, 5, "a"], [], [7], []]
+def test_rows_of_numbers_that_belong_to_no_table_are_an_error(tmp_path: Path) -> None:
+    rows = [[27.4, 20], [27.6, 21], [], ["f (GHz)", "Gain (dB)"], [27.5, 20]]
     read = measure(book(tmp_path / "a.xlsx", rows))
     assert low(taken(read.tables[0]), "Gain") == [20]
     assert [finding.severity for finding in read.findings] == ["error"]
-    assert "row 4" in read.findings[0].message
+    assert "2 rows of numbers belong to no table, the first is row 1" in read.findings[0].message
+
+
+def test_a_summary_below_a_blank_row_is_rejected_and_signatures_are_not(tmp_path: Path) -> None:
+    rows = [
+        ["f (GHz)", "Gain (dB)", "Vdd (V)", "Mode"],
+        [27.5, 20, 5, "a"],
+        [],
+        ["Worst case", 20],
+        [],
+        ["Checked by", "A. B."],
+    ]
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows)))
+    assert low(table, "Gain") == [20] and set(rejected(table)) == {"A4"}
 
 
 def test_summary_rows_are_rejected_and_a_mode_called_max_is_not(tmp_path: Path) -> None:

@@ -37,6 +37,7 @@ def u_of(table: MeasuredTable, name: str) -> list[float] | None:
         ("Gain uncertainty (dB), k=2", 0.8, 0.4),
         ("Uncertainty of gain (dB), k=2", 0.8, 0.4),
         ("± (dB), k=2", 0.8, 0.4),
+        ("Meas. unc. (dB, k=2)", 0.8, 0.4),
     ],
 )
 def test_columns(tmp_path: Path, header: str, amount: float, u: float) -> None:
