@@ -7,9 +7,10 @@ from numpy.typing import NDArray
 
 from specflow.limits.conversion import unit_of
 from specflow.limits.tree import walk_limit
-from specflow.model.evidence import SpectrumKind
 from specflow.model.limit import Limit, Mask, MeasuredIn
-from specflow.verification.records import Records, Source
+from specflow.units import Unit
+from specflow.verification.records import Records
+from specflow.verification.spectrum import recorded_bandwidth, scales, shares
 
 Floats = NDArray[np.float64]
 
@@ -26,34 +27,30 @@ def states_bandwidth(limit: Limit) -> bool:
 
 
 def in_bandwidth_of_limit(
-    records: Records, record: NDArray[np.intp], low: Floats, high: Floats, bandwidth_hz: Floats | None
+    records: Records,
+    record: NDArray[np.intp],
+    low: Floats,
+    high: Floats,
+    bandwidth_hz: Floats | None,
+    unit: Unit,
 ) -> tuple[Floats, Floats, NDArray[np.bool_]]:
-    """Return readings in the bandwidth of the limit, and where that cannot be done because a record states none.
+    """Return readings in the bandwidth of a limit in ``unit``, and where that cannot be had.
 
-    Noise-like readings scale by 10·log10 of the ratio, discrete lines do not; of an unknown spectrum only the interval
-    between the two is known.
+    It cannot where a record states no bandwidth, and where a reading would have to be scaled that is not in dB.
     """
     if bandwidth_hz is None:
         return low, high, np.zeros(low.shape, bool)
     source = records.source[record]
-    stated = np.array([_bandwidth(one) for one in records.sources])[source]
+    stated = np.array([recorded_bandwidth(one.column) or np.nan for one in records.sources])[source]
+    least, most = np.array([shares(one.column.spectrum) for one in records.sources]).reshape(-1, 2)[source].T
+    asked = ~np.isnan(bandwidth_hz)
     with np.errstate(invalid="ignore"):
-        step = 10 * np.log10(bandwidth_hz / stated)
-    step = np.where(np.isnan(bandwidth_hz) | (step == 0), 0.0, step)
-    least = np.array([_share(one, low_end=True) for one in records.sources])[source]
-    most = np.array([_share(one, low_end=False) for one in records.sources])[source]
-    lower_step = np.where(step < 0, most, least) * step
-    upper_step = np.where(step < 0, least, most) * step
+        step = np.where(asked, 10 * np.log10(bandwidth_hz / stated), 0.0)
     lost = np.isnan(step)
-    return low + np.where(lost, 0.0, lower_step), high + np.where(lost, 0.0, upper_step), lost
-
-
-def _bandwidth(source: Source) -> float:
-    own = source.column.quantity.bandwidth_hz
-    return np.nan if own is None else own
-
-
-def _share(source: Source, *, low_end: bool) -> float:
-    """Return how much of the step counts: all for noise, none for a line; both are possible where it is not said."""
-    known = {SpectrumKind.NOISE_LIKE: 1.0, SpectrumKind.DISCRETE: 0.0}
-    return known.get(source.column.spectrum, 0.0 if low_end else 1.0)
+    step = np.where(lost, 0.0, step)
+    if not (unit.is_log and scales(unit)):
+        lost |= (step != 0) & (most > 0)
+        step = np.zeros(step.shape)
+    lower = np.where(step < 0, most, least) * step
+    upper = np.where(step < 0, least, most) * step
+    return low + lower, high + upper, lost

@@ -21,16 +21,10 @@ from specflow.model.evidence import EvidenceTable, SpectrumKind, ValueArrays, Va
 from specflow.model.parameter import Parameter, QuantityIdentity
 from specflow.model.verdict import Mismatch
 from specflow.units import Converter, Kind, Unit, converter, missing_between_planes
+from specflow.verification.spectrum import WITHOUT_BANDWIDTH, recorded_bandwidth, scales, shares
 
 Floats = NDArray[np.float64]
 
-_WITHOUT_BANDWIDTH = {
-    Kind.LEVEL_DENSITY: Kind.LEVEL,
-    Kind.FIELD_DENSITY: Kind.FIELD_LEVEL,
-    Kind.POWER_FLUX_DENSITY: Kind.POWER_FLUX,
-    Kind.RATIO_DENSITY: Kind.RATIO,
-}
-_SCALES_WITH_BANDWIDTH = frozenset({*_WITHOUT_BANDWIDTH, *_WITHOUT_BANDWIDTH.values()})
 _MOVES_WITH_GAIN = frozenset({Kind.LEVEL, Kind.LEVEL_DENSITY})
 
 
@@ -57,8 +51,8 @@ class Fit:
         """Return the values in the unit of the limit; UnitError for a value that has none (log of a negative)."""
         if self.exact and not self.u_db:
             return arrays
-        low = self.convert(arrays.low)
-        high = low if arrays.high is arrays.low else self.convert(arrays.high)
+        low = self._ends(arrays.low)
+        high = low if arrays.high is arrays.low else self._ends(arrays.high)
         u = None if arrays.u is None else self._spread(arrays)
         if self.u_db:
             u = np.full(low.shape, self.u_db) if u is None else np.hypot(u, self.u_db)
@@ -66,6 +60,15 @@ class Fit:
             moved = low + self.least_db
             return ValueArrays(moved, moved if high is low else high + self.most_db, u)
         return ValueArrays(low + self.least_db, high + self.most_db, u)
+
+    def _ends(self, values: Floats) -> Floats:
+        """Return the values converted; "less than" stays open downwards in dB (down to nothing is -inf dB)."""
+        if self.convert.source.is_log or not self.convert.target.is_log:
+            return self.convert(values)
+        open_ends = np.isneginf(values)
+        if not open_ends.any():
+            return self.convert(values)
+        return np.where(open_ends, -np.inf, self.convert(np.where(open_ends, np.nan, values)))
 
     def _spread(self, arrays: ValueArrays) -> Floats:
         """Return u in the unit of the limit: how far the value moves when it moves by u, the larger side."""
@@ -128,7 +131,7 @@ def fit(
     moved = _between_planes(table, column, wanted, block, target)
     if isinstance(moved, Mismatch):
         return moved
-    scaled = Shift() if want.any_bandwidth else _between_bandwidths(table, column, wanted, source, target)
+    scaled = Shift() if want.any_bandwidth else _between_bandwidths(table, column, wanted, target)
     if isinstance(scaled, Mismatch):
         return scaled
     notes = () if convert.is_identity else (convert.words,)
@@ -158,7 +161,7 @@ def _conversion(source: Unit, target: Unit, parameter: Parameter | None) -> Conv
 
 
 def _bare(unit: Unit) -> Unit:
-    kind = _WITHOUT_BANDWIDTH.get(unit.kind)
+    kind = WITHOUT_BANDWIDTH.get(unit.kind)
     return unit if kind is None else replace(unit, kind=kind, bandwidth_hz=None)
 
 
@@ -206,17 +209,17 @@ def _path(block: Block, here: str, there: str) -> tuple[float, float] | None:
 
 
 def _between_bandwidths(
-    table: EvidenceTable, column: ValueColumn, wanted: QuantityIdentity, source: Unit, target: Unit
+    table: EvidenceTable, column: ValueColumn, wanted: QuantityIdentity, target: Unit
 ) -> Shift | Mismatch:
-    here = source.bandwidth_hz or column.quantity.bandwidth_hz
+    here = recorded_bandwidth(column)
     there = target.bandwidth_hz or wanted.bandwidth_hz
     if here == there:
         return Shift()
     if here is None or there is None:
         return _differs(table, column, "reference bandwidth", _hertz(here), _hertz(there))
-    if target.kind not in _SCALES_WITH_BANDWIDTH:
+    if not scales(target):
         return _differs(table, column, "reference bandwidth", _hertz(here), _hertz(there))
-    if not target.is_log:
+    if not target.is_log and column.spectrum is not SpectrumKind.DISCRETE:
         what = f"measured in {_hertz(here)}, required in {_hertz(there)}, and the limit is not in dB"
         return _mismatch(
             table, column, "bandwidth", what, "write the limit in dB, or measure in its bandwidth"
@@ -225,14 +228,14 @@ def _between_bandwidths(
 
 
 def _scaled(spectrum: SpectrumKind, here: float, there: float) -> Shift:
-    noise = 10 * math.log10(there / here)
-    step = f"{_hertz(here)} to {_hertz(there)}"
-    if spectrum is SpectrumKind.NOISE_LIKE:
-        return Shift(noise, noise, notes=(f"noise-like, {step}: {noise:+.4g} dB",))
+    step = 10 * math.log10(there / here)
+    low, high = sorted(share * step for share in shares(spectrum))
+    words = f"{_hertz(here)} to {_hertz(there)}"
     if spectrum is SpectrumKind.DISCRETE:
-        return Shift(notes=(f"a discrete line does not scale with bandwidth ({step})",))
-    low, high = min(0.0, noise), max(0.0, noise)
-    note = f"{step}: noise-like or discrete is not said, so only {low:+.4g} to {high:+.4g} dB is known"
+        return Shift(notes=(f"a discrete line does not scale with bandwidth ({words})",))
+    note = f"noise-like, {words}: {step:+.4g} dB"
+    if low != high:
+        note = f"{words}: noise-like or discrete is not said, so only {low:+.4g} to {high:+.4g} dB is known"
     return Shift(low, high, notes=(note,))
 
 

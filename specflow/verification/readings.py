@@ -123,7 +123,9 @@ def judge(records: Records, served: Served, judgement: Judgement) -> Readings:
     """Judge the readings; the context of the judgement has one row for each, or the limit needs no input."""
     bounds = evaluate_limit(judgement.limit, judgement.context)
     record, u = served.record, served.u
-    low, high, lost = in_bandwidth_of_limit(records, record, served.low, served.high, bounds.bandwidth_hz)
+    low, high, lost = in_bandwidth_of_limit(
+        records, record, served.low, served.high, bounds.bandwidth_hz, judgement.parsed_unit
+    )
     seen_low, seen_high, why = _compared(low, high, judgement)
     core = _core(
         bounds, judgement, records.exact if isinstance(records.exact, bool) else records.exact[record]
@@ -256,7 +258,9 @@ def _unsure_words(u: Array, judgement: Judgement, lost: NDArray[np.bool_]) -> li
                 f"{above} readings are not admissible: U up to {most:.3g}, allowed is {rule.greatest_uncertainty:g}"
             )
     if np.count_nonzero(lost):
-        words.append("the limit states a measurement bandwidth, and some readings state none")
+        words.append(
+            "the limit states a measurement bandwidth: some readings state none, or are not in dB and of another"
+        )
     return words
 
 

@@ -106,13 +106,16 @@ def no_records(mismatches: Sequence[Mismatch] = ()) -> Records:
 def gather(parts: Sequence[Held], conditions: Columns, mismatches: Sequence[Mismatch]) -> Records:
     """Return the records of all sources; ``conditions`` are theirs, stacked in the same order.
 
-    A source with a value that has no meaning in the unit of the limit (log of a negative) becomes a mismatch.
+    A source with a value that has no meaning in the unit of the limit (log of a negative) becomes a mismatch; so does
+    one of which some values come to nothing, with their number.
     """
     held: list[tuple[Held, ValueArrays]] = []
     refused = list(mismatches)
     for part in parts:
         try:
-            held.append((part, part.fit.apply(part.arrays)))
+            values = part.fit.apply(part.arrays)
+            held.append((part, values))
+            refused.extend(_lost(part, values))
         except UnitError as error:
             refused.append(_refused(part.source, error))
             empty = np.full(len(part.arrays.low), np.nan)
@@ -125,6 +128,23 @@ def gather(parts: Sequence[Held], conditions: Columns, mismatches: Sequence[Mism
 def _refused(source: Source, error: UnitError) -> Mismatch:
     remedy = error.hint or "correct the unit in the mapping of the table"
     return Mismatch(source.table.id, source.column.name, source.table.rows, error.message, remedy, "unit")
+
+
+def _lost(part: Held, values: ValueArrays) -> Sequence[Mismatch]:
+    """Report the values that a conversion made nothing of; a reading never disappears unsaid."""
+    if values is part.arrays:
+        return ()
+    missing, was_missing = np.isnan(values.low), np.isnan(part.arrays.low)
+    if values.high is not values.low:
+        missing, was_missing = missing | np.isnan(values.high), was_missing | np.isnan(part.arrays.high)
+    count = int(np.count_nonzero(missing & ~was_missing))
+    if not count:
+        return ()
+    table, column = part.source.table, part.source.column
+    what = (
+        f"{count} of {table.rows} values have no meaning in the unit of the limit ({part.fit.convert.words})"
+    )
+    return (Mismatch(table.id, column.name, count, what, "look at these values in the sheet", "unit"),)
 
 
 def _stacked(
