@@ -18,24 +18,37 @@ Documents = Mapping[str, Mapping[str, Document]]
 
 
 def diff(
-    before: Snapshot | Documents, after: Sequence[Document], *, complete_nouns: Collection[str] = ()
+    before: Snapshot | Documents,
+    after: Sequence[Document],
+    *,
+    removals: Sequence[Document] = (),
+    complete_nouns: Collection[str] = (),
 ) -> list[Change]:
     """Return what accepting ``after`` would change; documents that say the same give nothing.
 
     ``before`` is a snapshot, or noun → code key → document. Ids are compared without case, and keep the spelling that
     is stored. Revision and origin are no difference; an edit that changes what the document means makes its revision
-    grow by one, others keep it. Nothing is removed, except that for the nouns named in ``complete_nouns`` a document
-    that is missing from ``after`` is proposed for removal.
+    grow by one, others keep it. Nothing is removed, except ``removals`` that are stored, and that for the nouns
+    named in ``complete_nouns`` a document that is missing from ``after`` is proposed for removal.
 
-    Changes come in the order of the nouns, removals last. Raises DocumentError when ``after`` holds one id twice.
+    Changes come in the order of the nouns, removals last. Raises DocumentError when ``after`` holds one id twice, or
+    one that is to be removed.
     """
-    return _changes(_documents(before), after, complete_nouns, stored=False)
+    return _changes(_documents(before), after, complete_nouns, removals, stored=False)
+
+
+def due_revision(before: Document | None, after: Document) -> int | None:
+    """Return the revision that ``after`` will have once it is accepted; None for a noun without revisions."""
+    if before is None:
+        return _revision(after)
+    noun = NOUN_BY_DOCUMENT[type(after)]
+    return _due(noun, before, after, differing_fields(noun, before, after))
 
 
 def diff_snapshots(before: Snapshot | Documents, after: Snapshot | Documents) -> list[Change]:
     """Return the steps from one baseline to another: as ``diff``, with removals, and revisions as they are stored."""
     documents = [document for group in _documents(after).values() for document in group.values()]
-    return _changes(_documents(before), documents, [noun.name for noun in NOUNS], stored=True)
+    return _changes(_documents(before), documents, [noun.name for noun in NOUNS], (), stored=True)
 
 
 def _documents(source: Snapshot | Documents) -> Documents:
@@ -43,10 +56,16 @@ def _documents(source: Snapshot | Documents) -> Documents:
 
 
 def _changes(
-    before: Documents, after: Iterable[Document], complete_nouns: Collection[str], *, stored: bool
+    before: Documents,
+    after: Iterable[Document],
+    complete_nouns: Collection[str],
+    removals: Iterable[Document],
+    *,
+    stored: bool,
 ) -> list[Change]:
     changes: list[Change] = []
-    given = _by_noun(after)
+    given, unwanted = _by_noun(after), _by_noun(removals)
+    _refuse_both(given, unwanted)
     for noun in NOUNS:
         known = before.get(noun.name, {})
         for key, document in given.get(noun.name, {}).items():
@@ -57,11 +76,23 @@ def _changes(
         if name not in NOUN_BY_NAME:
             raise DocumentError(f"{name!r} is no noun of a project", hint=f"one of {', '.join(NOUN_BY_NAME)}")
     for noun in reversed(NOUNS):  # what links to a document goes before it
-        if noun.name in complete_nouns:
-            kept = given.get(noun.name, {})
-            gone = [document for key, document in before.get(noun.name, {}).items() if key not in kept]
-            changes += [_removal(noun, document) for document in gone]
+        kept = given.get(noun.name, {})
+        complete = noun.name in complete_nouns
+        changes += [
+            _removal(noun, document)
+            for key, document in before.get(noun.name, {}).items()
+            if (complete and key not in kept) or key in unwanted.get(noun.name, {})
+        ]
     return changes
+
+
+def _refuse_both(given: Documents, unwanted: Documents) -> None:
+    for noun, documents in unwanted.items():
+        for key in documents.keys() & given.get(noun, {}).keys():
+            raise DocumentError(
+                "the document is both given and to be removed",
+                where=f"{NOUN_BY_NAME[noun].title} {_code(NOUN_BY_NAME[noun], documents[key])}",
+            )
 
 
 def _by_noun(documents: Iterable[Document]) -> dict[str, dict[str, Document]]:
@@ -100,10 +131,16 @@ def _accepted(noun: Noun, before: Document, after: Document, differing: Sequence
     origin = getattr(after, "origin", None)
     if origin is not None:
         changed["origin"] = origin
-    revision = _revision(before)
-    if revision is not None and is_meaning_changing(noun, before, after, differing):
-        changed["revision"] = revision + 1
+    revision = _due(noun, before, after, differing)
+    if revision is not None:
+        changed["revision"] = revision
     return before.model_copy(update=changed)
+
+
+def _due(noun: Noun, before: Document, after: Document, differing: Sequence[str]) -> int | None:
+    revision = _revision(before)
+    grows = revision is not None and is_meaning_changing(noun, before, after, differing)
+    return revision + 1 if revision is not None and grows else revision
 
 
 def _removal(noun: Noun, document: Document) -> Change:

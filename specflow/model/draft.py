@@ -14,10 +14,12 @@ from specflow.model.finding import Finding
 class Draft:
     """Documents in the order met, arrays by evidence table id, findings about what could not be read.
 
-    ``echoes`` are the sentences that say back what was understood, by document id ("at least 45 dBm").
+    ``echoes`` are the sentences that say back what was understood, by document id ("at least 45 dBm"). ``removals`` are
+    stored documents that are no longer wanted, because what made them says so.
     """
 
     documents: Sequence[Document] = ()
     columns: Mapping[str, EvidenceColumns] = field(default_factory=dict)
     findings: Sequence[Finding] = ()
     echoes: Mapping[str, str] = field(default_factory=dict)
+    removals: Sequence[Document] = ()

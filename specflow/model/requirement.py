@@ -132,7 +132,8 @@ class Activity(Document):
     """A planned verification of one requirement: method × stage × tier, with criteria.
 
     ``planned`` is False for the default activity that every requirement has until somebody plans one.
-    ``credit_from`` is the least representative hardware whose test may close the activity.
+    ``credit_from`` is the least representative hardware whose test may close the activity. ``shorthand``: planned by
+    the row of its requirement itself, which it follows, not by a row of its own.
     """
 
     id: Code
@@ -149,6 +150,7 @@ class Activity(Document):
     procedure_revision: str = ""
     facility: str = ""
     planned: bool = True
+    shorthand: bool = False
     note: str = ""
     revision: int = 1
     origin: Origin | None = None

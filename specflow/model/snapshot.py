@@ -34,11 +34,13 @@ class Snapshot:
     """Everything that is stored, at one project revision, frozen.
 
     ``documents`` maps noun → code key → document. ``load_columns`` fetches the arrays of evidence tables by id.
+    ``removed`` maps noun → the code keys of what was removed: those ids are never used again.
     """
 
     revision: int
     documents: Mapping[str, Mapping[str, Document]]
     load_columns: ColumnsLoader = _no_columns
+    removed: Mapping[str, frozenset[str]] = field(default_factory=dict)
 
     def all(self, kind: type[D]) -> Sequence[D]:
         """Return all documents of one class, in the order of their codes as people read them."""

@@ -23,7 +23,7 @@ _DOCUMENTS = " UNION ALL ".join(
     [
         "SELECT '' AS noun, revision AS pk, '' AS code_key, '' AS body FROM project_state",
         *(
-            f"SELECT '{noun.name}', pk, code_key, body FROM \"{noun.name}\" WHERE removed_at IS NULL"
+            f"SELECT '{noun.name}', pk, code_key, CASE WHEN removed_at IS NULL THEN body END FROM \"{noun.name}\""
             for noun in NOUNS
         ),
     ]
@@ -45,6 +45,7 @@ def read_revision(run: Run) -> int:
 def load_snapshot(place: Place) -> Snapshot:
     """Return all documents at one revision; the arrays of evidence are read when the snapshot is asked for them."""
     documents: dict[str, dict[str, Document]] = {noun.name: {} for noun in NOUNS}
+    removed: dict[str, set[str]] = defaultdict(set)
     tables: dict[str, int] = {}
     revision = 0
     with translated(place.name), place.reading() as run:
@@ -53,10 +54,14 @@ def load_snapshot(place: Place) -> Snapshot:
         if not noun:
             revision = pk
             continue
+        if body is None:
+            removed[noun].add(key)
+            continue
         documents[noun][key] = _document(noun, key, body, place.name)
         if noun == "evidence_table":
             tables[key] = pk
-    return Snapshot(revision, documents, _ColumnsLoader(place, tables))
+    gone = {noun: frozenset(keys) for noun, keys in removed.items()}
+    return Snapshot(revision, documents, _ColumnsLoader(place, tables), gone)
 
 
 def _document(noun: str, key: str, body: str, where: str) -> Document:

@@ -36,7 +36,7 @@ def preview_load(store: ProjectStore, path: Path) -> LoadPreview:
     """Read the workbook and compare it with the project; nothing is stored."""
     snapshot = store.load()
     draft = read_workbook(path, snapshot, project_dictionary(snapshot))
-    changes = diff(snapshot, draft.documents)
+    changes = diff(snapshot, draft.documents, removals=draft.removals)
     given = sum(change.action in ("add", "edit") for change in changes)
     return LoadPreview(
         path,

@@ -10,12 +10,12 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from specflow.changes import diff, diff_snapshots
+from specflow.changes import diff, diff_snapshots, due_revision
 from specflow.errors import DocumentError
 from specflow.exchange import read_text
 from specflow.limits import parse_limit
 from specflow.model.base import Document, code_key
-from specflow.model.block import Plane
+from specflow.model.block import Plane, Tier
 from specflow.model.change import Change
 from specflow.model.conditions import Combination
 from specflow.model.nouns import NOUN_BY_DOCUMENT, NOUN_BY_NAME
@@ -418,3 +418,22 @@ def test_the_changes_of_two_snapshots_give_the_second_exactly(
     before, after = documents(*first), documents(*second)
     result = Snapshot(1, applied(before, diff_snapshots(before, after)))
     assert diff_snapshots(result, after) == []
+
+
+def test_what_is_unwanted_is_removed_if_it_is_stored() -> None:
+    before = a_snapshot(a_block(), a_block("PA"))
+    changes = diff(before, [a_block()], removals=[a_block("pa"), a_block("MIX")])
+    assert [(change.action, change.id, change.base_revision) for change in changes] == [("remove", "PA", 1)]
+    with pytest.raises(DocumentError, match="both given and to be removed"):
+        diff(before, [a_block()], removals=[a_block()])
+
+
+def test_the_revision_that_is_due_is_the_one_that_is_stored() -> None:
+    before = a_requirement(revision=4)
+    renamed = before.model_copy(update={"title": "Another"})
+    moved = before.model_copy(update={"tier": Tier.BLOCK if before.tier is not Tier.BLOCK else Tier.SYSTEM})
+    assert due_revision(None, before) == 4
+    assert due_revision(before, renamed) == 4
+    assert due_revision(before, moved) == 5
+    (change,) = diff(a_snapshot(before), [moved])
+    assert change.after is not None and '"revision":5' in change.after

@@ -61,7 +61,8 @@ def test_an_edited_limit_is_shown_in_meaning_before_it_is_stored(
     outcome = command("load", workbook, "--dry-run")
     assert outcome.code == ExitCode.CLEAN
     assert "tightened by 0.5 dB" in outcome.out
-    assert "changed: 1 requirement; 2 unchanged" in outcome.err
+    assert "changed: 1 requirement, 1 activity; 1 unchanged" in outcome.err
+    assert "now planned for requirement revision 2" in " ".join(outcome.out.split())
     assert stored(tmp_path) == [("R-1", ">= 45 dBm")]
     assert command("load", workbook, "--yes").code == ExitCode.CLEAN
     assert stored(tmp_path) == [("R-1", ">= 45.5 dBm")]

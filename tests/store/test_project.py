@@ -163,6 +163,7 @@ def test_a_removed_id_is_never_used_again(store: ProjectStore) -> None:
     store.apply(adding(a_block()), by=ME)
     store.apply([removing(a_block())], by="Bo Invented")
     assert not store.load().blocks
+    assert store.load().removed == {"block": frozenset({"lna"})}
     with pytest.raises(DocumentError, match=r"removed \(by Bo Invented at 2026-05-04T12:00:00Z\)"):
         store.apply(adding(a_block("lna")), by=ME)
     with pytest.raises(ConflictError, match="removed by Bo Invented"):
