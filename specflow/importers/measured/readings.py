@@ -5,7 +5,7 @@ The happy path is whole arrays: only cells that hold no plain number, and runs o
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from datetime import date, datetime, time, timedelta
 from functools import lru_cache
 
@@ -120,11 +120,16 @@ def _format_reason(run: OddRun, unit: Unit) -> str:
     if run.cell.kind is OddKind.SCALED:
         return f"the number format {run.cell.detail!r} shows another size than the value that is stored"
     try:
-        if parse_unit(run.cell.unit) == unit:
+        if _agree(parse_unit(run.cell.unit), unit):
             return ""
     except UnitError:
         return f"the number format writes {run.cell.unit!r} beside the number"
     return f"the number format says {run.cell.unit}, the column {unit}"
+
+
+def _agree(written: Unit, unit: Unit) -> bool:
+    """Whether two units are the same; "%" in a cell under "% rms" leaves the statistic to the header."""
+    return replace(written, measure=written.measure or unit.measure) == unit
 
 
 def _read_odd(
@@ -173,7 +178,7 @@ def _ends(
         else:
             rejects.blank[f"{reading.reason}: {text.strip()}"] += 1
         return None
-    if written is not None and written != unit:
+    if written is not None and not _agree(written, unit):
         rejects.add(row, column, value, f"the cell says {written}, the column {unit}")
         return None
     return reading.lo, reading.hi

@@ -88,6 +88,11 @@ def test_plain_numbers_under_percent_are_as_written(tmp_path: Path) -> None:
     assert low(taken(values_of(tmp_path, "EVM (% rms)", [3.1, 2.9])), "EVM") == [3.1, 2.9]
 
 
+def test_a_percent_sign_in_a_cell_agrees_with_percent_rms(tmp_path: Path) -> None:
+    table = taken(values_of(tmp_path, "EVM (% rms)", [3.1, "2.9 %"]))
+    assert low(table, "EVM") == [3.1, 2.9] and table.rejected == ()
+
+
 def test_percent_formats_in_part_of_a_column_are_asked_about(tmp_path: Path) -> None:
     assert "1 cells are in a percent format (from row 2)" in questions(
         values_of(tmp_path, "EVM (%)", [0.031, 2.9], {2: "0.0%"})
