@@ -25,6 +25,29 @@ def grid_weights(theta_deg: NDArray[np.float64], step_deg: float | None = None) 
     return np.asarray(weights / weights.sum())
 
 
+def covers_sphere(theta_deg: NDArray[np.float64], phi_deg: NDArray[np.float64]) -> bool:
+    """Return whether directions are a constant-step grid over the whole sphere (or a finer one), repeats allowed.
+
+    The zones of the rings (see ``grid_weights``) must leave no gap from pole to pole, and there must be as many unique
+    directions as a grid of that step has. θ below 0 is read as the direction at φ + 180. False where any is unstated.
+    """
+    if theta_deg.size == 0 or np.isnan(theta_deg).any() or np.isnan(phi_deg).any():
+        return False
+    theta = np.round(np.abs(theta_deg), 6)
+    rings = np.unique(theta)
+    if rings.size < 2 or rings[-1] > 180:
+        return False
+    steps = np.diff(rings)
+    step, close = float(steps.min()), 1e-3
+    if steps.max() > step + close or rings[0] > step / 2 + close or rings[-1] < 180 - step / 2 - close:
+        return False
+    phi = np.round((phi_deg + np.where(theta_deg < 0, 180.0, 0.0)) % 360, 6) % 360
+    phi = np.where((theta == 0) | (theta == 180), 0.0, phi)
+    poles = int(rings[0] == 0) + int(rings[-1] == 180)
+    around = round(360 / step)
+    return len(np.unique(np.stack([theta, phi]), axis=1).T) >= around * (rings.size - poles) + poles
+
+
 def percentile(
     values: NDArray[np.float64], weights: NDArray[np.float64], percent: float, *, complement: bool = False
 ) -> float:

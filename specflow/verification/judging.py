@@ -22,7 +22,14 @@ from specflow.model.verdict import Verdict
 from specflow.verification.credit import Credit
 from specflow.verification.limit_inputs import is_plain, limit_columns
 from specflow.verification.model_range import outside_validated_range
-from specflow.verification.populations import Statistic, condensed, forgiven, split, with_too_few
+from specflow.verification.populations import (
+    Statistic,
+    condensed,
+    forgiven,
+    split,
+    with_too_few,
+    without_value,
+)
 from specflow.verification.readings import Judgement, Readings, Served, judge
 from specflow.verification.records import Records
 from specflow.verification.standing import STANDINGS
@@ -149,7 +156,7 @@ class Judging:
         if isinstance(statistic.node.statistic, Exceptions):
             readings = self._excepted(readings, found.served, statistic.node.statistic, weights)
         readings = self._within_validated_range(readings, found.records)
-        return with_too_few(readings, found.few, found.few_words), weights
+        return without_value(with_too_few(readings, found.few, found.few_words)), weights
 
     def _excepted(self, readings: Readings, served: Served, node: Exceptions, weights: Credit) -> Readings:
         relaxed = None

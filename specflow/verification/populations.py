@@ -1,9 +1,10 @@
 """Limits on a statistic of many values: the value that is judged at each point, made from the readings there.
 
 *Worst*: every value must meet the limit. *Mean* of values, of power, of dB or of squares. *Percentile*: over a sphere
-each direction weighs as much as its solid angle. *Tolerance bound* (95/95): one value an item, the worst of it; normal
-population, exact factor. *Exceptions* and allowances: so many values may exceed so far. Uncertainty is taken as common
-to all values of a point (it does not average out), the largest of them.
+each direction weighs as much as its solid angle, and directions that do not cover the sphere say nothing about it.
+*Tolerance bound* (95/95): one value an item, the worst of it; normal population, exact factor. *Exceptions* and
+allowances: so many values may exceed so far. Uncertainty is taken as common to all values of a point (it does not
+average out), the largest of them.
 """
 
 from __future__ import annotations
@@ -28,9 +29,9 @@ from specflow.model.limit import (
     Worst,
 )
 from specflow.model.verdict import Verdict
-from specflow.statistics.sphere import grid_weights, percentile
+from specflow.statistics.sphere import covers_sphere, grid_weights, percentile
 from specflow.statistics.tolerance import one_sided_factor, two_sided_factor
-from specflow.units import parse_unit
+from specflow.units import convert, parse_unit
 from specflow.verification.credit import Credit
 from specflow.verification.readings import Readings, Served
 from specflow.verification.records import Records
@@ -38,6 +39,7 @@ from specflow.verification.records import Records
 Floats = NDArray[np.float64]
 Rows = NDArray[np.intp]
 
+_DEGREES = parse_unit("deg")
 _ITEM_NAMES = frozenset({"item", "items", "unit", "units", "serial", "sample", "samples"})
 _SPHERE_NAMES = frozenset({"sphere", "direction", "directions", "angle", "angles"})
 
@@ -188,13 +190,23 @@ def _mean(how: Mean, unit: str) -> Callable[[Floats], float]:
 def _percentile(how: Percentile, statistic: Statistic, served: Served, rows: Rows) -> Part:
     weights = np.ones(len(rows))
     if statistic.over_sphere:
-        theta = statistic.columns.numeric.get("theta")
-        if theta is None or np.isnan(theta[served.record[rows]]).any():
+        theta, phi = (_angles(statistic, name, served, rows) for name in ("theta", "phi"))
+        if not covers_sphere(theta, phi):
             return int(rows[0]), -np.inf, np.inf, _common(served.u[rows])
-        weights = grid_weights(theta[served.record[rows]]) if len(rows) > 1 else weights
+        weights = grid_weights(theta)
     level = how.percent.value
     return _ends(
         served, rows, lambda values: percentile(values, weights, level, complement=how.sense == "CCDF")
+    )
+
+
+def _angles(statistic: Statistic, name: str, served: Served, rows: Rows) -> Floats:
+    """Return an angle of the readings in degrees, NaN where it is not stated."""
+    values = statistic.columns.numeric.get(name)
+    if values is None:
+        return np.full(len(rows), np.nan)
+    return convert(
+        values[served.record[rows]], parse_unit(statistic.columns.units.get(name) or "deg"), _DEGREES
     )
 
 
@@ -229,6 +241,17 @@ def with_too_few(readings: Readings, few: NDArray[np.bool_], words: str) -> Read
     verdict = readings.verdict.copy()
     verdict[hit] = Verdict.INSUFFICIENT
     return replace(readings, verdict=verdict, why=(*readings.why, words))
+
+
+def without_value(readings: Readings) -> Readings:
+    """Return readings of which those that are no value at all (of a sphere that was not covered) are insufficient."""
+    nothing = np.isneginf(readings.low) & np.isposinf(readings.high)
+    if not nothing.any():
+        return readings
+    verdict = np.where(nothing, np.int8(Verdict.INSUFFICIENT), readings.verdict)
+    margin, guarded = (np.where(nothing, np.nan, one) for one in (readings.margin, readings.guarded))
+    words = "the directions are no grid of constant steps over the whole sphere"
+    return replace(readings, verdict=verdict, margin=margin, guarded=guarded, why=(*readings.why, words))
 
 
 def forgiven(
