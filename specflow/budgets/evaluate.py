@@ -82,7 +82,7 @@ def nominal_result(prepared: Prepared) -> BudgetResult:
         chain.required,
         chain.positions,
         outputs,
-        figures.arrays,
+        figures,
         levels,
         chain,
         prepared.notes,
@@ -91,14 +91,14 @@ def nominal_result(prepared: Prepared) -> BudgetResult:
 
 def _evaluated(output: Output, bars: Sequence[Bar], figures: Figures, chain: Chain) -> OutputResult:
     size = chain.size
-    result = np.broadcast_to(output.value(figures), (size,))
+    cumulative = np.broadcast_to(output.cumulative(figures), (len(chain.positions), size))
+    result = cumulative[-1]
     if np.isnan(result).any():
         raise CalculationError(
             f"{output.parameter} has no value at {chain.required.words(int(np.argmax(np.isnan(result))))}",
             where=f"budget {chain.budget.id}",
             hint="look for figures that are far out of range",
         )
-    cumulative = np.broadcast_to(output.cumulative(figures), (len(chain.positions), size))
     held = tuple(bar.held(result) for bar in bars)
     return OutputResult(
         output.parameter, output.unit, law_words(output, chain.budget), result, cumulative, held, output

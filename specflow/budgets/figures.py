@@ -72,10 +72,18 @@ def _length(chain: Chain, slice_: slice) -> int:
 
 
 def _sum_of(chain: Chain, values: Sequence[Floats], figure: str, shape: tuple[int, ...]) -> Floats:
-    array = np.zeros((len(chain.positions), *shape))
+    array = np.empty((len(chain.positions), *shape))
+    empty = set(range(len(array)))
     for read, value in zip(chain.lines, values, strict=True):
-        if read.role.figure == figure:
+        if read.role.figure != figure:
+            continue
+        if read.row in empty:
+            array[read.row] = read.figure(value)
+            empty.discard(read.row)
+        else:
             array[read.row] += read.figure(value)
+    for row in empty:
+        array[row] = 0.0
     return array
 
 

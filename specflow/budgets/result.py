@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
 from specflow.budgets.chain import Chain
+from specflow.budgets.figures import Figures
 from specflow.budgets.outputs import Output
 from specflow.budgets.required import Required
 from specflow.model.base import code_key
@@ -75,7 +75,7 @@ class BudgetResult:
     """A budget evaluated at nominal values, at every place of evaluation at once.
 
     ``required`` are the places (``required.words(i)`` says one, ``required.point`` gives its required point);
-    ``positions`` the chain in order; ``figures`` (positions, n) what the laws took (gain, noise figure, ... by name);
+    ``positions`` the chain in order; ``figures["gain"]`` (positions, n) and so on are what the laws took;
     ``levels`` (positions + 1, n) the level at the input and behind each position in dBm, None without an input level.
     ``notes`` are sentences on what was assumed.
     """
@@ -84,7 +84,7 @@ class BudgetResult:
     required: Required
     positions: tuple[BudgetPosition, ...]
     outputs: tuple[OutputResult, ...]
-    figures: Mapping[str, Floats]
+    figures: Figures
     levels: Floats | None
     chain: Chain
     notes: tuple[str, ...] = ()
