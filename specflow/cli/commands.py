@@ -34,6 +34,7 @@ HELP_NAMES = {"help_option_names": ["-h", "--help"]}
 COMMANDS = (
     CommandEntry("init", "Start a project: an empty project file and a workbook to fill in."),
     CommandEntry("load", "Load requirements, blocks and conditions from a workbook."),
+    CommandEntry("budget", "Show budgets: along the chain, shares, slopes, margins."),
     CommandEntry("attach", "Attach measurement files."),
     CommandEntry("status", "Show what is proved, failing and missing."),
     CommandEntry("check", "List the findings of the rules."),

@@ -1,0 +1,338 @@
+"""Compute a budget and hand over what it came to, as data that tables, pictures and writers share."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.budgets import (
+    BudgetResult,
+    MonteCarloResult,
+    ReadLine,
+    Rss,
+    Served,
+    ServedChance,
+    ServedRange,
+    WorstCase,
+    evaluate_budget,
+    monte_carlo,
+    rss,
+    shares_of,
+    slopes_of,
+    worst_case,
+)
+from specflow.budgets.figures import of_elements
+from specflow.budgets.root_sum import MOST_BEND
+from specflow.calculators.decibel import BOLTZMANN, T0
+from specflow.calculators.noise_cascade import cumulative_noise_figure
+from specflow.errors import CalculationError
+from specflow.model.budget import Budget
+from specflow.model.budget_outcome import (
+    BudgetOutcome,
+    ChanceOutcome,
+    LineOutcome,
+    QuantityOutcome,
+    ServedOutcome,
+    Way,
+    WayOutcome,
+)
+from specflow.model.snapshot import Snapshot
+from specflow.parameters import Dictionary
+
+Floats = NDArray[np.float64]
+TRIALS = 20_000
+SEED = 1
+ALL_WAYS = (Way.WORST_CASE, Way.RSS, Way.MONTE_CARLO)
+_ASSUMES = {
+    Way.NOMINAL: "every line at its figure",
+    Way.WORST_CASE: "every line at its worse end at once, whatever the others do; k·σ at the k·σ stated",
+    Way.RSS: "lines independent unless a correlation is stated, law near to linear over the tolerances "
+    f"(bend below {MOST_BEND:g} of the sum)",
+    Way.MONTE_CARLO: "the distributions and correlations of the lines as stated; one specimen at all conditions",
+}
+
+Step = Callable[[str], None]
+
+
+def _silent(text: str) -> None:
+    """Tell nobody."""
+
+
+@dataclass(frozen=True, slots=True)
+class HowToCompute:
+    """Which ways of treating tolerances to go, and the trials and seed of a Monte Carlo run.
+
+    Of several ``ways`` one that cannot be gone is kept with the reason; a single one that cannot is an error.
+    """
+
+    ways: Sequence[Way] = ALL_WAYS
+    trials: int = TRIALS
+    seed: int = SEED
+
+
+def budget_outcome(
+    budget: Budget,
+    snapshot: Snapshot,
+    dictionary: Dictionary,
+    how: HowToCompute | None = None,
+    *,
+    step: Step = _silent,
+) -> BudgetOutcome:
+    """Return what a budget comes to. SpecflowError with place and remedy where it cannot be evaluated."""
+    how = how or HowToCompute()
+    step("nominal")
+    outcome = _nominal(evaluate_budget(budget, snapshot, dictionary))
+    ways = list(_nominal_ways(outcome))
+    for way in dict.fromkeys(how.ways):
+        step(f"{way.value}, {how.trials:,} trials" if way is Way.MONTE_CARLO else way.value)
+        try:
+            outcome, found = _gone(way, outcome, snapshot, dictionary, how)
+        except CalculationError as error:
+            if len(how.ways) == 1:
+                raise
+            found = [_refused(way, one, error) for one in ways if one.way is Way.NOMINAL]
+        ways.extend(found)
+    return replace(outcome, ways=tuple(ways))
+
+
+def _gone(
+    way: Way, outcome: BudgetOutcome, snapshot: Snapshot, dictionary: Dictionary, how: HowToCompute
+) -> tuple[BudgetOutcome, list[WayOutcome]]:
+    budget = outcome.budget
+    match way:
+        case Way.WORST_CASE:
+            return outcome, _worst_ways(worst_case(budget, snapshot, dictionary))
+        case Way.RSS:
+            return outcome, _rss_ways(rss(budget, snapshot, dictionary))
+        case Way.MONTE_CARLO:
+            drawn = monte_carlo(budget, snapshot, dictionary, trials=how.trials, seed=how.seed)
+            return _with_chances(outcome, drawn), _chance_ways(drawn)
+    return outcome, []
+
+
+# Nominal
+
+
+def _nominal(result: BudgetResult) -> BudgetOutcome:
+    slopes = {one.parameter: one.slopes for one in slopes_of(result)}
+    shares = {one.parameter: one for one in shares_of(result)}
+    size = result.required.size
+    quantities = []
+    for one in result.outputs:
+        shared = shares.get(one.parameter)
+        quantities.append(
+            QuantityOutcome(
+                parameter=one.parameter,
+                unit=one.unit,
+                law=one.law,
+                result=one.result,
+                cumulative=one.cumulative,
+                served=tuple(_served(found) for found in one.served),
+                slopes=np.broadcast_to(slopes[one.parameter], (len(result.chain.lines), size)),
+                shares=None if shared is None else shared.shares,
+                shared="" if shared is None else shared.of,
+            )
+        )
+    worst = result.worst
+    source = _source(result)
+    return BudgetOutcome(
+        budget=result.budget,
+        places=tuple(result.required.words(place) for place in range(size)),
+        positions=result.positions,
+        quantities=tuple(quantities),
+        lines=tuple(_line(one, result) for one in result.chain.lines),
+        figures={name: _spread(array, result) for name, array in result.figures.arrays.items()},
+        temperature_k=result.chain.temperature_k,
+        levels=None
+        if result.levels is None
+        else np.broadcast_to(result.levels, (len(result.positions) + 1, size)),
+        noise=_noise(result, source),
+        source_k=source,
+        worst=None if worst is None else (worst.requirement.id, worst.worst),
+        notes=result.notes,
+    )
+
+
+def _spread(array: Floats, result: BudgetResult) -> Floats:
+    return np.broadcast_to(array, (len(result.positions), result.required.size))
+
+
+def _line(read: ReadLine, result: BudgetResult) -> LineOutcome:
+    size = result.required.size
+    values = np.broadcast_to(read.values, (size,))
+    taken = values if read.convert.is_identity else read.convert(values)
+    factor, offset = of_elements(result.chain, read) if read.role.figure == "amount" else (1.0, 0.0)
+    return LineOutcome(
+        line=read.line,
+        row=read.row,
+        value=values,
+        taken=np.broadcast_to(taken, (size,)),
+        unit=read.role.unit,
+        figure=read.role.figure,
+        port=read.role.port,
+        factor=factor,
+        offset=offset,
+    )
+
+
+def _served(one: Served) -> ServedOutcome:
+    return ServedOutcome(
+        requirement=one.requirement,
+        unit=one.unit,
+        margin_unit=one.margin_unit,
+        lower=one.lower,
+        upper=one.upper,
+        result=one.result,
+        margin=one.margin,
+        reserve=one.reserve,
+        reserve_holder=one.reserve_holder,
+        worst=one.worst,
+        why=one.why,
+    )
+
+
+def _source(result: BudgetResult) -> Floats | None:
+    """Return the noise temperature of what feeds a cascade: its antenna's line, the budget's own, else 290 K."""
+    if "noise_figure" not in result.figures.arrays:
+        return None
+    size = result.required.size
+    lines = [one for one in result.chain.lines if one.role.figure == "source_k"]
+    if lines:
+        return np.asarray(
+            sum((np.broadcast_to(one.figure(one.values), (size,)) for one in lines), np.zeros(size))
+        )
+    stated = result.budget.noise_source
+    return np.full(size, T0 if stated is None else stated)
+
+
+def _noise(result: BudgetResult, source: Floats | None) -> Floats | None:
+    """Return the noise level at the input and behind each position in dBm; None without figures or bandwidth."""
+    bandwidth = result.budget.bandwidth_hz
+    if source is None or bandwidth is None:
+        return None
+    gain = _spread(result.figures["gain"], result)
+    factor = 10.0 ** (cumulative_noise_figure(gain, _spread(result.figures["noise_figure"], result)) / 10.0)
+    kelvin = np.vstack([source, source + T0 * (factor - 1.0)])
+    behind = np.vstack([np.zeros(result.required.size), np.cumsum(gain, axis=0)])
+    return np.asarray(10.0 * np.log10(kelvin * BOLTZMANN * bandwidth * 1e3) + behind)
+
+
+# Ways of treating tolerances
+
+
+def _nominal_ways(outcome: BudgetOutcome) -> Sequence[WayOutcome]:
+    return [
+        _way(Way.NOMINAL, quantity.parameter, one, _at(one.result, one.worst), _at(one.result, one.worst))
+        for quantity in outcome.quantities
+        for one in quantity.served
+    ]
+
+
+def _at(values: Floats, place: int) -> float:
+    return float(values[place]) if place >= 0 else float("nan")
+
+
+def _way(
+    way: Way, parameter: str, one: ServedOutcome | Served, low: float, high: float, assumes: str = ""
+) -> WayOutcome:
+    return WayOutcome(
+        way=way,
+        requirement=one.requirement.id,
+        parameter=parameter,
+        unit=one.unit,
+        low=min(low, high),
+        high=max(low, high),
+        margin=one.smallest_margin,
+        margin_unit=one.margin_unit,
+        worst=one.worst,
+        assumes=assumes or _ASSUMES[way],
+    )
+
+
+def _between(way: Way, parameter: str, held: ServedRange, assumes: str) -> WayOutcome:
+    """Return the adverse end with the range about it, both at the place where the adverse margin is smallest."""
+    place = held.adverse.worst
+    low, high = _at(held.adverse.result, place), _at(held.favourable.result, place)
+    return _way(way, parameter, held.adverse, low, high, assumes)
+
+
+def _worst_ways(found: WorstCase) -> list[WayOutcome]:
+    return [
+        _between(Way.WORST_CASE, one.parameter, held, f"{_ASSUMES[Way.WORST_CASE]}; {one.words}")
+        for one in found.outputs
+        for held in one.served
+    ]
+
+
+def _rss_ways(found: Rss) -> list[WayOutcome]:
+    return [
+        _between(Way.RSS, one.parameter, held, f"{_ASSUMES[Way.RSS]}; the range is {_rss_words(one.means)}")
+        for one in found.outputs
+        for held in one.served
+    ]
+
+
+def _rss_words(means: str) -> str:
+    if means == "limits":
+        return "the root sum of limits, neither a k·σ nor guaranteed"
+    return f"± {means.replace('sigma', 'σ')}"
+
+
+def _refused(way: Way, nominal: WayOutcome, error: CalculationError) -> WayOutcome:
+    reason = f"{error.message}; {error.hint}" if error.hint else error.message
+    return WayOutcome(way, nominal.requirement, nominal.parameter, refused=reason, assumes=_ASSUMES[way])
+
+
+def _with_chances(outcome: BudgetOutcome, drawn: MonteCarloResult) -> BudgetOutcome:
+    chances = tuple(
+        ChanceOutcome(
+            requirement=one.requirement,
+            parameter=output.parameter,
+            margin_unit=one.margin_unit,
+            probability=one.probability,
+            joint=one.joint.value,
+            joint_words=one.joint.words,
+            quantiles=one.quantiles,
+            edges=one.edges,
+            counts=one.histogram,
+        )
+        for output in drawn.outputs
+        for one in output.served
+    )
+    notes = (*outcome.notes, *(note for note in drawn.notes if note not in outcome.notes))
+    return replace(
+        outcome,
+        chances=chances,
+        joint_words=drawn.joint.words,
+        trials=drawn.trials,
+        seed=drawn.seed,
+        notes=notes,
+    )
+
+
+LOW_PART = 0.01
+"""The quantile of the worst margin that stands beside the other ways: 99 of 100 specimens do better."""
+
+
+def _chance_ways(drawn: MonteCarloResult) -> list[WayOutcome]:
+    return [_chance_way(output.parameter, one, drawn) for output in drawn.outputs for one in output.served]
+
+
+def _chance_way(parameter: str, one: ServedChance, drawn: MonteCarloResult) -> WayOutcome:
+    place = int(np.nanargmin(one.probability)) if not np.isnan(one.probability).all() else -1
+    assumes = (
+        f"{_ASSUMES[Way.MONTE_CARLO]}; {drawn.trials:,} trials, seed {drawn.seed}; margin that 99 % keep"
+    )
+    return WayOutcome(
+        way=Way.MONTE_CARLO,
+        requirement=one.requirement.id,
+        parameter=parameter,
+        margin=one.quantiles[LOW_PART],
+        margin_unit=one.margin_unit,
+        worst=place,
+        probability=one.joint.words,
+        assumes=assumes,
+    )
