@@ -117,7 +117,7 @@ def _tables(
         elif header is not None:
             tables.append((sheet, read_table(grid, sheet.layout, header, sha256, findings)))
         elif _has_content(grid):
-            own_name = header_key(grid.name) in (
+            own_name = not sheet.may_be_another and header_key(grid.name) in (
                 header_key(sheet.layout.title),
                 header_key(sheet.layout.noun),
             )

@@ -23,6 +23,7 @@ from specflow.importers.sheets import (
     items,
     nonconformances,
     parameters,
+    project,
     requirements,
     uncertainty,
     waivers,
@@ -45,6 +46,7 @@ SHEETS: tuple[Sheet, ...] = (
     nonconformances.SHEET,
     waivers.SHEET,
     *board_decisions.SHEETS,
+    project.SHEET,
 )
 
 __all__ = ["SHEETS", "Sheet"]

@@ -35,7 +35,8 @@ class Sheet:
     """One sheet kind.
 
     ``identify`` gives the code of a row, "" when it has none; rows with the same code are one document where
-    ``grouped``. ``read`` turns the rows into documents and adds them to the intake.
+    ``grouped``. ``read`` turns the rows into documents and adds them to the intake. ``may_be_another``: people use its
+    name for other sheets too (a cover), so one without its headers is left aside and not refused.
     """
 
     layout: SheetLayout
@@ -43,6 +44,7 @@ class Sheet:
     read: Read
     identify: Callable[[SheetRow, Intake], str] = own_id
     grouped: bool = False
+    may_be_another: bool = False
 
     def names(self) -> tuple[str, ...]:
         """What a worksheet of this kind may be called."""
