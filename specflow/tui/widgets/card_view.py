@@ -56,15 +56,12 @@ class CardView(VerticalScroll):
         again = self.card is not None and self.card.id == card.id
         self._place = round(self.scroll_offset.y) if again else 0
         self.card = card
-        self.border_title = f"{card.id} · {card.label}"
-        self.set_classes(f"tone-{card.tone.value or 'plain'}")
         self.refresh(recompose=True)
 
     def show_words(self, words: str) -> None:
         """Show a sentence where there is no card."""
         self.card = None
         self._words = words
-        self.border_title = ""
         self.refresh(recompose=True)
 
     def compose(self) -> ComposeResult:
@@ -77,6 +74,9 @@ class CardView(VerticalScroll):
         """Set the parts anew; the grid that had the keys keeps them."""
         kept = self.focused_grid
         await super().recompose()
+        card = self.card
+        self.border_title = f"{card.id} · {card.label}" if card is not None else ""
+        self.set_classes(f"tone-{card.tone.value or 'plain'}" if card is not None else "")
         grids = list(self.query(ProofGridView))
         if kept is not None and grids:
             grids[min(kept, len(grids) - 1)].focus(scroll_visible=False)
