@@ -4,7 +4,8 @@ What may live here, in the order of a run:
 
 - ``header`` and ``table``: which row and columns count; ``row`` and ``cells``: a cell, typed or refused
 - ``intake``: what was read so far, references, duplicates; ``spelling``: the nearest known words
-- one module a noun; ``limit_cells``, ``decision_rules``, ``requirement_columns``: parts of the requirement sheet
+- one module a noun; ``limit_cells``, ``limit_names``, ``limit_doubts``, ``decision_rules``, ``requirement_columns``:
+  parts of the requirement sheet
 - ``cycles``, ``leftovers``, ``plans``: what is checked and completed once all sheets are read
 - ``sheet``: what a sheet kind is; ``findings``: what may be reported
 

@@ -1,4 +1,4 @@
-"""A cell that holds a limit: read, and checked against the parameter and the names that it refers to."""
+"""A cell that holds a limit: read, and checked against its parameter."""
 
 from __future__ import annotations
 
@@ -8,9 +8,7 @@ from specflow.conditions import find_dimension
 from specflow.errors import ExpressionError
 from specflow.importers.sheets.intake import Intake
 from specflow.importers.sheets.row import SheetRow
-from specflow.importers.sheets.spelling import near
 from specflow.limits import alternatives, limit_inputs, parse_limit
-from specflow.model.conditions import ConditionsSet
 from specflow.model.declared import DeclaredValue
 from specflow.model.limit import Limit, Population
 from specflow.model.parameter import Better, Parameter
@@ -50,22 +48,6 @@ def limit_cell(
         return None
     _check_kind(row, column, limit, parameter)
     return limit
-
-
-def check_inputs(row: SheetRow, intake: Intake, limit: Limit, conditions: str | None) -> None:
-    """Say which names of a formula nobody supplies so far: no declared value, no condition, no parameter."""
-    declared = [value.name for value in intake.all(DeclaredValue)]
-    known = intake.find(ConditionsSet, conditions)
-    own = {dimension.name for dimension in known.dimensions} if known else set()
-    for name in sorted(limit_inputs(limit) - own - set(declared)):
-        if find_dimension(name) is None and not intake.dictionary.match(name):
-            intake.note(
-                row,
-                "limit",
-                f"the limit refers to {name}, neither declared nor a known condition" + near(name, declared),
-                f"declare {name} on the sheet Declared values, or name a condition that is recorded",
-                rule="workbook-unknown-input",
-            )
 
 
 def _check_grammar(row: SheetRow, column: str, text: str, hint: str) -> None:

@@ -7,8 +7,9 @@ from collections.abc import Sequence
 from specflow.errors import UnitError
 from specflow.importers.sheets.decision_rules import decision_rule, provers, stated_tolerance
 from specflow.importers.sheets.intake import Intake
-from specflow.importers.sheets.limit_cells import check_inputs, limit_cell
+from specflow.importers.sheets.limit_cells import limit_cell
 from specflow.importers.sheets.limit_doubts import note_doubts
+from specflow.importers.sheets.limit_names import check_names, names_words
 from specflow.importers.sheets.parameters import known_parameter
 from specflow.importers.sheets.plans import note_plan, stated_plan
 from specflow.importers.sheets.requirement_columns import LAYOUT
@@ -43,6 +44,7 @@ def read(rows: Sequence[SheetRow], intake: Intake) -> None:
         parameter = intake.dictionary.get(requirement.quantity.parameter)
         words = limit_words(requirement.limit, parameter)
         intake.echo(requirement.id, words)
+        intake.echo(requirement.id, names_words(requirement.limit, intake, requirement.conditions))
 
 
 def _stated(row: SheetRow, requirement: Requirement) -> set[str]:
@@ -69,7 +71,7 @@ def _requirement(row: SheetRow, intake: Intake) -> Requirement | None:
     plain = _standing(row, limit, block) | _said(row)
     if limit is None or quantity is None:
         return None
-    check_inputs(row, intake, limit, conditions)
+    check_names(row, intake, _limit_column(row), limit, conditions)
     note_doubts(row, intake, _limit_column(row), limit, parameter, conditions)
     return row.build(
         Requirement,
