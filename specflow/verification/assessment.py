@@ -21,9 +21,10 @@ from specflow.verification.activity import ActivityOutcome, summarise
 from specflow.verification.alternatives import Member, members_of, put_together
 from specflow.verification.conflicts import conflicts
 from specflow.verification.credit import credit
+from specflow.verification.grid import Bench
 from specflow.verification.judging import Judging
 from specflow.verification.limit_inputs import is_plain, limit_columns
-from specflow.verification.points import Bench, ItemPoints, item_points
+from specflow.verification.points import ItemPoints, item_points
 from specflow.verification.readings import Readings, Served, readings_of, serving
 from specflow.verification.records import Records
 from specflow.verification.standing import STANDINGS
@@ -186,6 +187,7 @@ def _bench(requirement: Requirement, activity: Activity, ground: Ground, workspa
         ground.records,
         readings,
         weights,
+        ground.judging,
         ground.nothing_required,
         requirement.decision_rule.conditional_pass_counts,
         ground.judging.together,

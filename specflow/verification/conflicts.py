@@ -19,7 +19,7 @@ from specflow.limits.conversion import unit_of
 from specflow.model.columns import UNSTATED
 from specflow.model.project import Policy
 from specflow.model.verdict import Conflict
-from specflow.verification.points import Bench
+from specflow.verification.grid import Bench, at_one_value
 from specflow.verification.standing import ACCEPTED
 
 Floats = NDArray[np.float64]
@@ -62,8 +62,7 @@ def _suspicious(bench: Bench, allowed: Floats) -> Iterator[NDArray[np.intp]]:
     readings, records = bench.readings, bench.records
     cell = records.item[readings.record] * bench.points.size + readings.point
     cells = len(records.items) * bench.points.size
-    if bench.matching.along is not None:
-        cell, cells = _along_range(bench, cell)
+    cell, cells = at_one_value(bench, cell, None, cells)
     half = allowed * _HALF
     lowest, highest = np.full(cells, np.inf), np.full(cells, -np.inf)
     np.minimum.at(lowest, cell, readings.low + half)
@@ -98,21 +97,6 @@ def _same_elsewhere(bench: Bench, group: NDArray[np.intp]) -> Iterator[NDArray[n
     order = np.lexsort(codes)
     change = np.logical_or.reduce([np.diff(one[order]) != 0 for one in codes])
     yield from np.split(group[order], np.flatnonzero(change) + 1)
-
-
-def _along_range(bench: Bench, cell: NDArray[np.intp]) -> tuple[NDArray[np.intp], int]:
-    """Return finer cells: readings of one cell at different values along the range do not contradict each other."""
-    by_record = np.zeros(bench.records.size)
-    assert bench.matching.along is not None
-    by_record[bench.matching.record] = bench.matching.along
-    along = by_record[bench.readings.record]
-    order = np.lexsort((along, cell))
-    change = (np.diff(cell[order]) != 0) | ~np.isclose(
-        along[order][1:], along[order][:-1], rtol=_CLOSE, atol=0
-    )
-    finer = np.empty(len(cell), np.intp)
-    finer[order] = np.concatenate([[0], np.cumsum(change)])[: len(order)]
-    return finer, len(cell)
 
 
 def _worst_pair(bench: Bench, group: NDArray[np.intp], allowed: Floats) -> tuple[int, int] | None:

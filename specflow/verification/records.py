@@ -15,7 +15,7 @@ from specflow.model.columns import Columns
 from specflow.model.evidence import EvidenceTable, ValueArrays, ValueColumn
 from specflow.model.verdict import Mismatch, RecordRef
 from specflow.verification.comparable import Fit
-from specflow.verification.standing import REPLACED, RowStanding
+from specflow.verification.standing import WITHDRAWN, Replacement, RowStanding
 
 T = TypeVar("T", bound=np.generic)
 Floats = NDArray[np.float64]
@@ -50,8 +50,9 @@ class Records:
 
     ``u`` (m,) is NaN where no uncertainty is known, None where none is known at all. ``item`` are codes into ``items``
     ("" where none is named), ``source`` codes into ``sources``, ``row`` positions in the table. ``standing`` are codes
-    (see ``standing``). ``usable`` is None when all rows have a value and may still count. ``exact`` (m,) or a single
-    flag says which values are compared as written.
+    (see ``standing``). ``usable`` is None when all rows have a value and were not withdrawn. ``exact`` (m,) or a single
+    flag says which values are compared as written. ``replacements``: which readings (m,) were replaced by name, and the
+    keys of the tables that may show it.
     """
 
     low: Floats
@@ -70,6 +71,7 @@ class Records:
     notes: tuple[str, ...] = ()
     reasons: tuple[str, ...] = ()
     mismatches: tuple[Mismatch, ...] = ()
+    replacements: tuple[Replacement, ...] = ()
 
     @property
     def size(self) -> int:
@@ -174,7 +176,23 @@ def _stacked(
         tuple(dict.fromkeys(note for part in parts for note in part.fit.notes)),
         tuple(dict.fromkeys(reason for part in parts for reason in part.standing.reasons)),
         tuple(mismatches),
+        _replacements(parts),
     )
+
+
+def _replacements(parts: Sequence[Held]) -> tuple[Replacement, ...]:
+    """Return what was replaced by name, in rows of the whole instead of rows of a table."""
+    if not any(part.standing.replaced for part in parts):
+        return ()
+    found, start, size = [], 0, sum(len(part.standing.codes) for part in parts)
+    for part in parts:
+        stop = start + len(part.standing.codes)
+        for rows, tables in part.standing.replaced:
+            whole = np.zeros(size, bool)
+            whole[start:stop] = rows
+            found.append((whole, tables))
+        start = stop
+    return tuple(found)
 
 
 def _joined(parts: Sequence[NDArray[T]]) -> NDArray[T]:
@@ -190,7 +208,7 @@ def _uncertainties(arrays: Sequence[ValueArrays]) -> Floats | None:
 def _usable(low: Floats, standing: NDArray[np.int8], accepted: bool) -> NDArray[np.bool_] | None:
     usable = low == low
     if not accepted:
-        usable &= standing < REPLACED
+        usable &= standing < WITHDRAWN
     return None if usable.all() else usable
 
 

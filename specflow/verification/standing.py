@@ -1,8 +1,9 @@
 """Standing: may a record count? Withdrawn, superseded, stale, provisional or accepted; the first that applies.
 
 *Withdrawn*: found wrong. *Superseded*: replaced by named rows of another table; a failing reading stays open until
-the supersession names it. *Stale*: a change record took effect after the reading was taken. *Provisional*: not
-accepted yet, dated after the day of judgement, or taken with an instrument whose calibration had run out.
+the supersession names it *and* an accepted reading of the successor decides the same point (see ``grid``). *Stale*: a
+change record took effect after the reading was taken. *Provisional*: not accepted yet, dated after the day of
+judgement, or taken with an instrument whose calibration had run out.
 """
 
 from __future__ import annotations
@@ -24,9 +25,12 @@ from specflow.model.snapshot import Snapshot
 from specflow.model.verdict import Standing
 
 Codes = NDArray[np.int8]
+#: Rows that were replaced by name, and the keys of the tables that replace them (and of those that replace these).
+Replacement = tuple[NDArray[np.bool_], frozenset[str]]
 
 ACCEPTED, PROVISIONAL, STALE, SUPERSEDED, REPLACED, WITHDRAWN = range(6)
-#: Standing by code. REPLACED is superseded by a record that names the fail: nothing of it stays open.
+#: Standing by code. REPLACED is superseded by a record that names the fail: nothing of it stays open once that record
+#: has decided the point.
 STANDINGS = (
     Standing.ACCEPTED,
     Standing.PROVISIONAL,
@@ -44,11 +48,15 @@ _TOUCHED = {"procedure": _OBSERVED, "calibration": _OBSERVED, "model": _REASONED
 
 @dataclass(frozen=True, slots=True)
 class RowStanding:
-    """Standing of each row of a table for one parameter: ``codes`` (rows,) int8, with ``reasons``."""
+    """Standing of each row of a table for one parameter: ``codes`` (rows,) int8, with ``reasons``.
+
+    ``replaced``: the rows whose fail a supersession names, and by which tables it may be settled.
+    """
 
     codes: Codes
     all_accepted: bool
     reasons: tuple[str, ...] = ()
+    replaced: tuple[Replacement, ...] = ()
 
 
 @dataclass(frozen=True)
@@ -88,15 +96,29 @@ class StandingRegister:
             _mark(codes, rows, PROVISIONAL, reason, reasons)
         for reason, rows in self._stale(table, parameter, items, dates):
             _mark(codes, rows, STALE, reason, reasons)
+        replaced: list[Replacement] = []
         for supersession in self.supersessions.get(code_key(table.id), ()):
             code = REPLACED if supersession.names_fail else SUPERSEDED
             reason = f"superseded by {supersession.later}" + _because(supersession.reason)
-            _mark(codes, _rows(table, supersession.rows), code, reason, reasons)
+            rows = _rows(table, supersession.rows)
+            _mark(codes, rows, code, reason, reasons)
+            if supersession.names_fail:
+                replaced.append((rows, self._successors(supersession.later)))
         for withdrawal in self.withdrawals.get(code_key(table.id), ()):
             reason = "withdrawn" + _because(withdrawal.reason)
             _mark(codes, _rows(table, withdrawal.rows), WITHDRAWN, reason, reasons)
         named = tuple(f"{table.id}: {reason}" for reason in reasons)
-        return RowStanding(codes, not codes.any(), named)
+        return RowStanding(codes, not codes.any(), named, tuple(replaced))
+
+    def _successors(self, table: str) -> frozenset[str]:
+        """Return the keys of a table and of all that took its place since."""
+        found, queue = set[str](), [code_key(table)]
+        while queue:
+            key = queue.pop()
+            if key not in found:
+                found.add(key)
+                queue += [code_key(one.later) for one in self.supersessions.get(key, ())]
+        return frozenset(found)
 
     def _nothing_recorded(self, table: EvidenceTable, dates: TextColumn | None) -> bool:
         """Whether a table is accepted, taken on one day that has come, and nobody recorded anything about it."""
