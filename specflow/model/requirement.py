@@ -53,10 +53,11 @@ class RuleName(StrEnum):
 class DecisionRule(Document):
     """How a reading becomes a verdict.
 
-    The guard band is ``w = guard_factor · U`` with U at k = 2. ``greatest_uncertainty`` is a ceiling on U (k = 2):
-    above it evidence is not admissible, or, with ``excess_tightens``, the excess is taken off the limit. ``comparison``
-    chooses the absolute or the rounding method of ASTM E29. Under the four-way rule ``conditional_pass_counts`` says
-    whether a reading inside the guard band proves its point.
+    The guard band is ``w = guard_factor · U`` with U at k = 2. ``greatest_uncertainty`` is a ceiling on U (k = 2), in
+    the tolerance unit of the limit (dB for one in dBm, % for one in %): above it evidence is not admissible, or, with
+    ``excess_tightens``, the excess is taken off the limit. ``comparison`` chooses the absolute or the rounding method
+    of ASTM E29. Under the four-way rule ``conditional_pass_counts`` says whether a reading inside the guard band
+    proves its point.
     """
 
     name: RuleName = RuleName.SIMPLE

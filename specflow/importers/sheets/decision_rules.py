@@ -8,11 +8,12 @@ from typing import get_args
 from specflow.importers.sheets.intake import Intake
 from specflow.importers.sheets.items import known_items
 from specflow.importers.sheets.row import SheetRow
+from specflow.limits import alternatives
 from specflow.model.expression import Number
 from specflow.model.limit import Limit, TestTolerance
 from specflow.model.parameter import Parameter
-from specflow.model.requirement import DecisionRule, Provers, RuleName
-from specflow.units import convert, parse_quantity, parse_unit, split_quantity, tolerance_unit
+from specflow.model.requirement import DecisionRule, Provers, Requirement, RuleName
+from specflow.units import Unit, convert, parse_quantity, parse_unit, split_quantity, tolerance_unit
 
 _RULE = re.compile(
     r"^(?P<name>simple|guarded|four[- ]?way)\s*(?:w\s*=)?\s*(?P<factor>[0-9]+(?:\.[0-9]+)?)?\s*(?:[·*x]\s*)?U?$",
@@ -29,7 +30,9 @@ REFUSED = "not admissible"
 COMPARISONS: tuple[str, ...] = get_args(DecisionRule.model_fields["comparison"].annotation)
 
 
-def decision_rule(row: SheetRow, limit: Limit | None, parameter: Parameter | None) -> DecisionRule:
+def decision_rule(
+    row: SheetRow, intake: Intake, limit: Limit | None, parameter: Parameter | None
+) -> DecisionRule:
     """Read "simple", "guarded 1.0 U" or "four-way 1.0 U", and the greatest uncertainty that is admissible."""
     text = row.text("decision_rule")
     parts = _RULE.match(text) if text else None
@@ -44,7 +47,7 @@ def decision_rule(row: SheetRow, limit: Limit | None, parameter: Parameter | Non
     return DecisionRule(
         name=name,
         guard_factor=factor,
-        greatest_uncertainty=_greatest_uncertainty(row, limit, parameter),
+        greatest_uncertainty=_greatest_uncertainty(row, intake, limit, parameter),
         excess_tightens=excess == TIGHTENS,
         comparison="rounded" if rounded else "absolute",
         conditional_pass_counts=row.yes("conditional_pass_counts", True),
@@ -55,16 +58,27 @@ def _rule_name(word: str) -> RuleName:
     return RuleName.FOUR_WAY if word.casefold().startswith("four") else RuleName(word.casefold())
 
 
-def _greatest_uncertainty(row: SheetRow, limit: Limit | None, parameter: Parameter | None) -> float | None:
+def _greatest_uncertainty(
+    row: SheetRow, intake: Intake, limit: Limit | None, parameter: Parameter | None
+) -> float | None:
     """U at k = 2 in the tolerance unit of the limit; another k is brought to 2."""
     text = row.text("greatest_uncertainty")
     parts = _GREATEST.match(text)
+    wanted = None if parameter is None else _unit_of_uncertainty(limit, parameter)
     if not text or parts is None or parameter is None:
+        _check_kept(row, intake, wanted)
+        return None
+    if wanted is None:
+        row.fault(
+            "greatest_uncertainty",
+            f"the limit {limit.text if limit else ''!r} is in several units, so an uncertainty of {text} cannot be "
+            "held against all of it",
+            "write one requirement for each of the alternatives, each with its greatest uncertainty",
+        )
         return None
     quantity = row.attempt("greatest_uncertainty", lambda: parse_quantity(parts["amount"]))
     if quantity is None:
         return None
-    wanted = tolerance_unit(parse_unit(limit.unit if limit and limit.unit else parameter.unit))
     value = row.attempt(
         "greatest_uncertainty",
         lambda: convert(
@@ -78,6 +92,35 @@ def _greatest_uncertainty(row: SheetRow, limit: Limit | None, parameter: Paramet
         )
         return None
     return None if value is None else float(value) * 2 / factor
+
+
+def _unit_of_uncertainty(limit: Limit | None, parameter: Parameter | None) -> Unit | None:
+    """The unit in which readings are compared with the limit: of what is added to it; None where there are several."""
+    own = (
+        []
+        if limit is None
+        else [limit.unit]
+        if limit.unit
+        else [one.limit.unit for one in alternatives(limit)]
+    )
+    units = [unit for unit in own if unit] or ([parameter.unit] if parameter is not None else [])
+    found = {tolerance_unit(parse_unit(unit)) for unit in units}
+    return found.pop() if len(found) == 1 else None
+
+
+def _check_kept(row: SheetRow, intake: Intake, wanted: Unit | None) -> None:
+    """Refuse to keep the uncertainty that the project has under a limit that is now in another unit."""
+    known = intake.snapshot.find(Requirement, row.subject) if row.subject else None
+    if known is None or known.decision_rule.greatest_uncertainty is None or row.has("greatest_uncertainty"):
+        return
+    before = _unit_of_uncertainty(known.limit, intake.dictionary.get(known.quantity.parameter))
+    if wanted is not None and before is not None and before != wanted:
+        row.fault(
+            "limit" if row.has("limit") else "parameter",
+            f"the limit is in another unit than before, and the greatest uncertainty of the project, "
+            f"{known.decision_rule.greatest_uncertainty:g} {before.symbol}, is no amount of it",
+            "add the column Greatest uncertainty and state it in the new unit",
+        )
 
 
 def provers(row: SheetRow, intake: Intake) -> Provers:

@@ -66,7 +66,7 @@ def _requirement(row: SheetRow, intake: Intake) -> Requirement | None:
     quantity = _quantity(row, intake, named, limit, block)
     parents, reason = _parents(row, intake)
     conditions = _conditions(row, intake)
-    rule, who = decision_rule(row, limit, parameter), provers(row, intake)
+    rule, who = decision_rule(row, intake, limit, parameter), provers(row, intake)
     tolerance = stated_tolerance(row)
     plain = _standing(row, limit, block) | _said(row)
     if limit is None or quantity is None:
