@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
 from functools import cache
 from importlib.resources import files
 from urllib.parse import quote
 
 import jinja2
+from markupsafe import Markup
 
+from specflow.exporters.svg import svg
 from specflow.model.report import Report
 
 title = "Page"
@@ -17,7 +20,26 @@ extension = ".html"
 def render(report: Report) -> bytes:
     """Return the page."""
     names = _anchors(report)
-    return _template().render(report=report, anchors=names, starts=_starts(names)).encode()
+    page = _template().render(report=report, anchors=names, starts=_starts(names), drawings=_drawings(report))
+    return page.encode()
+
+
+@dataclass(frozen=True, slots=True)
+class _Drawing:
+    """A picture with its drawing."""
+
+    title: str
+    words: str
+    markup: Markup
+
+
+def _drawings(report: Report) -> dict[str, list[_Drawing]]:
+    """Return the drawings that stand above each table, by its key."""
+    drawn: dict[str, list[_Drawing]] = {}
+    for number, one in enumerate(report.pictures, start=1):
+        markup = Markup(svg(one.picture, f"picture-{number}"))  # its text is escaped where it is drawn
+        drawn.setdefault(one.table, []).append(_Drawing(one.picture.title, one.picture.words, markup))
+    return drawn
 
 
 def _anchors(report: Report) -> dict[str, tuple[str, int]]:

@@ -5,7 +5,9 @@ from __future__ import annotations
 from enum import StrEnum
 
 from specflow.model.base import Document
+from specflow.model.formula_sheet import FormulaSheet
 from specflow.model.origin import Origin
+from specflow.model.picture import Picture
 
 
 class CellTone(StrEnum):
@@ -75,14 +77,26 @@ class ReportTable(Document):
         return self.model_copy(update={"columns": columns, "rows": tuple(rows)})
 
 
+class ReportPicture(Document):
+    """A picture and the key of the table that it stands above."""
+
+    table: str
+    picture: Picture
+
+
 class Report(Document):
-    """Several tables under one title, with the facts that state what it was made from and the caution."""
+    """Several tables under one title, with the facts that state what it was made from and the caution.
+
+    ``sheets`` are calculations to be followed by hand; only a workbook shows them as they are.
+    """
 
     title: str
     subtitle: str = ""
     facts: tuple[tuple[str, str], ...] = ()
     cautions: tuple[str, ...] = ()
     tables: tuple[ReportTable, ...] = ()
+    pictures: tuple[ReportPicture, ...] = ()
+    sheets: tuple[FormulaSheet, ...] = ()
 
     def table(self, key: str) -> ReportTable:
         """Return one table by its key; KeyError when there is none."""
