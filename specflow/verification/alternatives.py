@@ -1,20 +1,22 @@
 """Alternatives on different quantities: each judged by itself, the outcomes put together point by point.
 
 The looser of alternatives is met where any is met and failed only where all are failed; in between it is
-inconclusive. The stricter is met where all are met. Shown is the member that decides most points; margins are in its
-unit.
+inconclusive. The stricter is met where all are met. Shown at each point is the member that decides it; margins are in
+the unit of the one that decides most points.
 """
 
 from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
+from typing import Any, TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
 
 from specflow.limits import alternatives, rule_of
 from specflow.limits.conversion import same_unit_spelling
+from specflow.model.evidence import EvidenceTable
 from specflow.model.limit import Limit, Rule
 from specflow.model.parameter import QuantityIdentity
 from specflow.model.requirement import Requirement
@@ -22,10 +24,16 @@ from specflow.model.verdict import Verdict
 from specflow.parameters import Dictionary
 from specflow.verification.bandwidths import states_bandwidth
 from specflow.verification.comparable import Wanted
+from specflow.verification.credit import is_about_design
 from specflow.verification.limit_inputs import is_plain
 from specflow.verification.points import ItemPoints, absent
 
+T = TypeVar("T", bound=np.generic)
 Codes = NDArray[np.int8]
+Flags = NDArray[np.bool_]
+
+_MARGINS = ("margin", "guarded_margin", "u")
+_FIGURES = (*_MARGINS, "value_low", "value_high", "lower", "upper", "column", "row")
 
 
 @dataclass(frozen=True, slots=True)
@@ -65,41 +73,140 @@ def _other(requirement: Requirement, limit: Limit, name: str, dictionary: Dictio
 
 
 def put_together(
-    limit: Limit, members: Sequence[Sequence[ItemPoints]], n: int
+    limit: Limit, members: Sequence[Sequence[ItemPoints]], n: int, units: Sequence[str]
 ) -> tuple[list[ItemPoints], int]:
-    """Return the items with the outcome of the limit as a whole, and which member is shown."""
+    """Return the items with the outcome of the limit as a whole, and which member most points are shown by.
+
+    At each point stands the record of the member that decides there. ``units`` are those of the members' margins: a
+    margin in another unit than that of the member returned is left out.
+    """
     looser = rule_of(limit) is Rule.LOOSER
-    deciding = [sum(one.results.k for one in items) for items in members]
-    shown = deciding.index(max(deciding) if looser else min(deciding))
-    names = dict.fromkeys(one.item for items in members for one in items)
-    found = []
-    for name in names:
-        own = [next((one for one in items if one.item == name), absent(name, n)) for items in members]
-        found.append(_combined(own, own[shown], looser))
-    return found, shown
+    found = [_combined(own, looser) for own in _by_item(members, n)]
+    shown = np.concatenate([decider for _, decider in found]) if found else np.zeros(0, np.intp)
+    most = int(np.bincount(shown, minlength=len(members)).argmax()) if len(shown) else 0
+    return [_in_unit(one, decider, units, most) for one, decider in found], most
 
 
-def _combined(members: Sequence[ItemPoints], shown: ItemPoints, looser: bool) -> ItemPoints:
+def _by_item(members: Sequence[Sequence[ItemPoints]], n: int) -> list[list[ItemPoints]]:
+    """Return for each item its points under each member; evidence about the design holds for every item."""
+    names = list(dict.fromkeys(one.item for items in members for one in items))
+    of_design = [
+        next((one for one in items if not one.item and _is_about_design(one)), None) for items in members
+    ]
+    nameless = [one for items in members for one in items if not one.item]
+    if len(names) > 1 and nameless and all(map(_is_about_design, nameless)):
+        names.remove("")
+
+    def under(items: Sequence[ItemPoints], place: int, name: str) -> ItemPoints:
+        own = next((one for one in items if one.item == name), None)
+        return own or of_design[place] or absent(name, n)
+
+    return [
+        [_named(under(items, place, name), name) for place, items in enumerate(members)] for name in names
+    ]
+
+
+def _named(one: ItemPoints, name: str) -> ItemPoints:
+    return one if one.item == name else replace(one, item=name, results=replace(one.results, item=name))
+
+
+def _is_about_design(one: ItemPoints) -> bool:
+    used = np.unique(one.results.table[one.results.table >= 0]).tolist()
+    return bool(used) and all(is_about_design(one.tables[table]) for table in used)
+
+
+def _combined(members: Sequence[ItemPoints], looser: bool) -> tuple[ItemPoints, NDArray[np.intp]]:
+    """Return one item under the whole limit, and the member that decides each point."""
     effective = np.stack([one.effective for one in members])
     proved = np.stack([one.results.proved for one in members])
     counts = np.logical_or.reduce([one.counts for one in members])
     whole = np.asarray(proved.any(axis=0) if looser else proved.all(axis=0))
-    verdict = _looser(effective, proved) if looser else effective.max(axis=0)
-    if not looser:
-        failing = (effective >= Verdict.CONDITIONAL_FAIL).any(axis=0)
-        verdict = np.where(~failing & (effective == Verdict.NONE).any(axis=0), np.int8(Verdict.NONE), verdict)
+    verdict = _looser(effective, proved) if looser else _stricter(effective)
+    decider = _decider(members, effective, proved, looser)
+    first = members[0]
+
+    def of(values: Sequence[NDArray[T]]) -> NDArray[T]:
+        return np.asarray(np.stack(values)[decider, np.arange(len(decider))])
+
+    tables, offset = _tables(members)
+    table = of([one.results.table + start for one, start in zip(members, offset, strict=True)])
+    there = of([one.results.table for one in members]) >= 0
+    figures: dict[str, Any] = {name: of([getattr(one.results, name) for one in members]) for name in _FIGURES}
+    shown = of([one.results.verdict for one in members])
     results = replace(
-        shown.results,
-        verdict=np.where(counts, verdict, shown.results.verdict),
+        first.results,
+        verdict=np.where(counts, verdict, shown),
         proved=whole,
         counted=counts,
+        table=np.where(there, table, np.int32(-1)),
+        tables=tuple(one.id for one in tables),
+        **figures,
     )
-    return replace(
-        shown,
-        results=results,
-        effective=verdict.astype(np.int8),
-        stale=np.logical_or.reduce([one.stale for one in members]),
+    return (
+        ItemPoints(
+            first.item,
+            results,
+            tables,
+            verdict.astype(np.int8),
+            of([one.rank for one in members]),
+            np.logical_or.reduce([one.stale for one in members]),
+            of([one.marginal for one in members]),
+            members=tuple(members),
+            looser=looser,
+        ),
+        decider,
     )
+
+
+def _decider(
+    members: Sequence[ItemPoints], effective: Codes, proved: Flags, looser: bool
+) -> NDArray[np.intp]:
+    """Return which member decides each point: of the looser the best, of the stricter the worst one.
+
+    Of equals the one that is nearest to its limit (farthest from it, where the looser passes) decides. Where nothing
+    counts any member with a reading is shown.
+    """
+    margin = np.stack([_margin(one) for one in members])
+    missing = np.stack([one.results.table < 0 for one in members])
+    grade = effective.astype(np.float64)
+    if looser:
+        grade = np.where(proved, grade - len(Verdict), grade)
+        margin = -margin
+    else:
+        grade = -np.where(proved, grade - len(Verdict), grade)
+    # Margins order members of one grade only: squeezed between 0 and 1 they never outweigh a grade.
+    order = grade + np.where(missing, 2.0 * len(Verdict), 0.0) + (np.arctan(margin) / np.pi + 0.5) / 2
+    return np.asarray(order.argmin(axis=0))
+
+
+def _margin(one: ItemPoints) -> NDArray[np.float64]:
+    guarded = one.results.guarded_margin
+    margin = np.where(np.isnan(guarded), one.results.margin, guarded)
+    return np.where(np.isnan(margin), 0.0, margin)
+
+
+def _tables(members: Sequence[ItemPoints]) -> tuple[tuple[EvidenceTable, ...], list[int]]:
+    """Return the tables of all members, and where those of each start."""
+    starts = [0]
+    for one in members:
+        starts.append(starts[-1] + len(one.tables))
+    return tuple(table for one in members for table in one.tables), starts[:-1]
+
+
+def _in_unit(one: ItemPoints, decider: NDArray[np.intp], units: Sequence[str], shown: int) -> ItemPoints:
+    """Leave out the margins that are in another unit than those of the member shown."""
+    other = np.array([unit != units[shown] for unit in units], bool)[decider]
+    if not other.any():
+        return one
+    margins: dict[str, Any] = {name: np.where(other, np.nan, getattr(one.results, name)) for name in _MARGINS}
+    return replace(one, results=replace(one.results, **margins))
+
+
+def _stricter(effective: Codes) -> Codes:
+    """Return the worst verdict; nothing where a member has nothing and none fails."""
+    worst = effective.max(axis=0)
+    lacking = (worst < Verdict.CONDITIONAL_FAIL) & (effective == Verdict.NONE).any(axis=0)
+    return np.where(lacking, np.int8(Verdict.NONE), worst)
 
 
 def _looser(effective: Codes, proved: NDArray[np.bool_]) -> Codes:

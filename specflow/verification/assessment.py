@@ -73,25 +73,28 @@ def assess(requirement: Requirement, activities: Sequence[Activity], workspace: 
     members = members_of(requirement, workspace.dictionary)
     grounds = [lay_ground(requirement, member, points, workspace) for member in members]
     named = [str(getattr(workspace.item(name), "id", name)) for name in requirement.provers.items]
+    units = [difference_unit(member.limit.unit) for member in members]
     outcomes: list[ActivityOutcome] = []
     benches: list[Bench] = []
     shown = 0
     for activity in activities:
         own = [_bench(requirement, activity, ground, workspace) for ground in grounds]
-        items, shown = _items(requirement, own, points.size)
-        unit = difference_unit(members[shown].limit.unit)
+        items, shown = _items(requirement, own, points.size, units)
         why = [text for bench in own for text in (*bench.readings.why, *bench.credit.why)]
-        outcomes.append(summarise(activity, requirement.provers, points, items, unit, named, why))
+        outcomes.append(summarise(activity, requirement.provers, points, items, units[shown], named, why))
         benches = benches or own
     return _assessment(points, members[shown].limit.unit, outcomes, grounds, benches, workspace)
 
 
-def _items(requirement: Requirement, benches: Sequence[Bench], n: int) -> tuple[Sequence[ItemPoints], int]:
+def _items(
+    requirement: Requirement, benches: Sequence[Bench], n: int, units: Sequence[str]
+) -> tuple[Sequence[ItemPoints], int]:
     """Return the points of every item under the whole limit, and which member of its alternatives is shown."""
     together = requirement.provers.may_complete_each_other
     if len(benches) == 1:
         return item_points(benches[0], together=together), 0
-    return put_together(requirement.limit, [item_points(bench, together=together) for bench in benches], n)
+    members = [item_points(bench, together=together) for bench in benches]
+    return put_together(requirement.limit, members, n, units)
 
 
 def _assessment(
@@ -146,7 +149,7 @@ def lay_ground(requirement: Requirement, member: Member, points: Points, workspa
     conditions = workspace.conditions_of(requirement, records)
     matched = workspace.matching(points, conditions)
     served = readings_of(records, *serving(records, matched.record, matched.point))
-    judging = Judging(requirement, member.limit, points, records, conditions, workspace)
+    judging = Judging(requirement, member.want, member.limit, points, records, conditions, workspace)
     return Ground(
         points,
         matched.matching,

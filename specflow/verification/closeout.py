@@ -8,21 +8,26 @@ from specflow.model.verdict import CloseOut, Compliance, Label, Verdict
 from specflow.verification.compliance import Facts, compliance
 
 
-def _waived(facts: Facts) -> bool:
-    return facts.fails and facts.waiving.all_covered
+def waived(facts: Facts) -> bool:
+    """Whether waivers cover all that fails; an open nonconformance keeps the row failing until it is closed."""
+    return facts.fails and facts.waiving.all_covered and not facts.nonconformances
 
 
 def _ready(facts: Facts) -> bool:
     return compliance(facts) is Compliance.COMPLIANT
 
 
+def _verified(facts: Facts) -> bool:
+    return _ready(facts) and facts.approved and not facts.nonconformances
+
+
 #: When each label applies. The order is that of ``Label``: the first that applies is shown.
 _APPLIES: dict[Label, Callable[[Facts], bool]] = {
     Label.NOT_APPLICABLE: lambda facts: not facts.applicable,
     Label.WAIVER_EXCEEDED: lambda facts: facts.fails and bool(facts.waiving.exceeded),
-    Label.FAILING: lambda facts: compliance(facts) is Compliance.NON_COMPLIANT and not _waived(facts),
+    Label.FAILING: lambda facts: compliance(facts) is Compliance.NON_COMPLIANT and not waived(facts),
     Label.PARTIALLY_COMPLIANT: lambda facts: (
-        compliance(facts) is Compliance.PARTIALLY_COMPLIANT and not _waived(facts)
+        compliance(facts) is Compliance.PARTIALLY_COMPLIANT and not waived(facts)
     ),
     Label.CONFLICTING: lambda facts: facts.conflicting,
     Label.REVERIFY: lambda facts: facts.stale,
@@ -36,9 +41,9 @@ _APPLIES: dict[Label, Callable[[Facts], bool]] = {
     Label.INCONCLUSIVE: lambda facts: Verdict.INCONCLUSIVE in facts.verdicts,
     Label.MARGINAL: lambda facts: facts.marginal,
     Label.TBR: lambda facts: facts.to_be_reviewed,
-    Label.READY: lambda facts: _ready(facts) and not facts.approved,
-    Label.CLOSED_WAIVED: _waived,
-    Label.CLOSED_VERIFIED: lambda facts: _ready(facts) and facts.approved,
+    Label.READY: lambda facts: _ready(facts) and not _verified(facts),
+    Label.CLOSED_WAIVED: waived,
+    Label.CLOSED_VERIFIED: _verified,
 }
 
 
@@ -62,19 +67,19 @@ def _close_out(facts: Facts, reason: Label) -> tuple[CloseOut, str]:
         return CloseOut.CLOSED, f"not applicable: {facts.not_applicable_reason}"
     if reason is Label.CLOSED_WAIVED:
         return CloseOut.CLOSED, f"waived by {', '.join(facts.waiving.covering)}"
-    if reason is Label.CLOSED_VERIFIED and not facts.nonconformances:
+    if reason is Label.CLOSED_VERIFIED:
         return CloseOut.CLOSED, "verified"
     return CloseOut.OPEN, _open_reason(facts, reason)
 
 
 def _open_reason(facts: Facts, reason: Label) -> str:
     parts = [reason.value]
-    if reason is Label.CLOSED_VERIFIED:
-        parts = []
     if reason is Label.WAIVER_EXCEEDED:
         parts = list(facts.waiving.exceeded)
     if facts.nonconformances:
         parts.append(f"{', '.join(facts.nonconformances)} open")
+        if facts.fails and facts.waiving.all_covered:
+            parts.append(f"then waived by {', '.join(facts.waiving.covering)}")
     if facts.fails and facts.waiving.requested:
         parts.append(f"waiver requested ({', '.join(facts.waiving.requested)})")
     return "; ".join(parts)

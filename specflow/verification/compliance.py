@@ -1,7 +1,8 @@
 """Compliance: does what was built meet the limit? From what counts, never from what is missing.
 
 Non-compliant: at least one governing verdict is a fail. Partially compliant: the same, where people declared the
-split. Compliant: every required activity has all its points proved. A waiver changes nothing here.
+split and everything that fails lies within it. Compliant: every required activity has all its points proved. A waiver
+changes nothing here.
 """
 
 from __future__ import annotations
@@ -26,6 +27,7 @@ class Facts:
     verdicts: frozenset[Verdict] = frozenset({Verdict.NONE})
     some_proved: bool = False
     split_declared: bool = False
+    split_remarks: tuple[str, ...] = ()
     conflicting: bool = False
     stale: bool = False
     marginal: bool = False

@@ -63,7 +63,12 @@ class Credit:
 
 def is_of_design(source: Source) -> bool:
     """Whether evidence is about the design and so holds for every item of the block."""
-    return source.table.method not in _OBSERVED
+    return is_about_design(source.table)
+
+
+def is_about_design(table: EvidenceTable) -> bool:
+    """Whether a table is about the design: reasoned, not observed on a specimen."""
+    return table.method not in _OBSERVED
 
 
 def credit(

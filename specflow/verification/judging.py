@@ -13,14 +13,18 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.conditions.points import Points
-from specflow.limits import LimitContext
+from specflow.limits import LimitContext, evaluate_condition
+from specflow.limits.expression_shape import expression_names
 from specflow.limits.tree import walk_limit
-from specflow.model.columns import Columns
+from specflow.model.columns import Columns, TextColumn
+from specflow.model.expression import Expression
 from specflow.model.limit import Allowance, Allowed, Exceptions, Limit, Mask, Population
 from specflow.model.requirement import Requirement
 from specflow.model.verdict import Verdict
+from specflow.verification.bandwidths import states_bandwidth
+from specflow.verification.comparable import Wanted
 from specflow.verification.credit import Credit
-from specflow.verification.limit_inputs import is_plain, limit_columns
+from specflow.verification.limit_inputs import columns_of, is_plain, limit_columns
 from specflow.verification.model_range import outside_validated_range
 from specflow.verification.populations import (
     Statistic,
@@ -42,9 +46,13 @@ _INSIDE = "a statistic inside a table or a gate is not computed"
 
 @dataclass(frozen=True, slots=True)
 class Judging:
-    """One limit of a requirement, over the records that serve its points; ``conditions`` in the terms of its set."""
+    """One limit of a requirement, over the records that serve its points; ``conditions`` in the terms of its set.
+
+    ``want`` is the quantity that the limit is on.
+    """
 
     requirement: Requirement
+    want: Wanted
     limit: Limit
     points: Points
     records: Records
@@ -72,6 +80,29 @@ class Judging:
         if any(isinstance(node, Population | Allowed) for node in below):
             return self._undecided(served, _INSIDE)
         return self._within_validated_range(self._judged(self.limit, served))
+
+    def against(self, permitted: Limit, readings: Readings, pairs: Rows) -> NDArray[np.int8]:
+        """Return the verdicts of some readings held against another limit in the same unit, under the same rule.
+
+        Where that limit states no bandwidth it is that of this limit.
+        """
+        served = readings.served.take(pairs)
+        if not states_bandwidth(permitted):
+            served = replace(served, low=readings.low[pairs], high=readings.high[pairs])
+        return self._judged(permitted, served).verdict
+
+    def holds(self, condition: Expression, readings: Readings, pairs: Rows) -> NDArray[np.bool_]:
+        """Return for which readings a condition holds: at what their points require, else at what was recorded.
+
+        ``item`` is the item of a reading. Where the condition cannot be decided it does not hold.
+        """
+        record, point = readings.record[pairs], readings.point[pairs]
+        names = expression_names(condition)
+        columns = columns_of(names, self.points, self.conditions, record, point, self.workspace.declared)
+        items = TextColumn(self.records.item[record].astype(np.int32), self.records.items)
+        columns = replace(columns, text={"item": items, **columns.text})
+        holds, known = evaluate_condition(condition, columns)
+        return np.asarray(holds & known)
 
     def among_others(self, served: Served, weights: Credit) -> tuple[Readings, Credit]:
         """Return readings (or the statistics made of them) judged with those they belong to, and their credit."""

@@ -42,11 +42,23 @@ def limit_columns(
     """
     if is_plain(limit):
         return Columns(len(record))
+    return columns_of(tree_names(limit.tree), points, records, record, point, declared)
+
+
+def columns_of(
+    names: Iterable[str],
+    points: Points,
+    records: Columns | None,
+    record: Rows,
+    point: Rows,
+    declared: Container[str] = (),
+) -> Columns:
+    """Return the conditions of these names for each pair: as the point requires, else as recorded."""
     numeric: dict[str, NDArray[np.float64]] = {}
     text: dict[str, TextColumn] = {}
     units: dict[str, str] = {}
     stated = [columns for columns in (points.columns_lo, records) if columns is not None]
-    for name, held in _held_as(tree_names(limit.tree), stated, declared).items():
+    for name, held in _held_as(names, stated, declared).items():
         columns, rows = (points.columns_lo, point) if _fixed(points, held) else (records, record)
         if columns is None:
             continue

@@ -7,7 +7,7 @@ for every item; items never complete each other's points unless the requirement 
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
 from typing import Any, TypeVar
 
@@ -46,6 +46,10 @@ class Fails:
         return self.bench.readings.point[self.pair]
 
 
+#: Tells which of some failing readings, of the item of that name, are accepted.
+Accepts = Callable[[Fails, str], Flags]
+
+
 @dataclass(frozen=True, slots=True)
 class ItemPoints:
     """One item at every point (n,).
@@ -54,7 +58,7 @@ class ItemPoints:
     pass does not prove the point. ``rank`` is that of the governing reading, -1 without one; ``stale``: something there
     is stale; ``marginal``: the governing reading is near its limit. ``tables`` are those that ``results.table`` counts.
     ``laid_out`` holds all its readings (``place`` is its number there); ``members`` the outcomes under each of several
-    alternatives instead.
+    alternatives instead, of which the ``looser`` or the stricter governs.
     """
 
     item: str
@@ -67,6 +71,7 @@ class ItemPoints:
     laid_out: Grid | None = None
     place: int = 0
     members: tuple[ItemPoints, ...] = ()
+    looser: bool = False
 
     @property
     def proved(self) -> Flags:
@@ -91,6 +96,32 @@ class ItemPoints:
             grid.bench.credit.rank[pairs] == self.rank[point]
         )
         return Fails(grid.bench, pairs[standing])
+
+    def where_fails(self, at: Flags, accepts: Accepts) -> Flags:
+        """Return at which of some failing points everything that fails is accepted.
+
+        Of alternatives the looser needs one member of which that is true, the stricter all that fail.
+        """
+        if self.members:
+            failing = [at & (one.effective >= _CONDITIONAL_FAIL) for one in self.members]
+            accepted = [
+                one.where_fails(flags, accepts) for one, flags in zip(self.members, failing, strict=True)
+            ]
+            if self.looser:
+                return np.asarray(np.logical_or.reduce(accepted))
+            every = [there | ~flags for there, flags in zip(accepted, failing, strict=True)]
+            return np.asarray(np.logical_and.reduce(every) & np.logical_or.reduce(failing))
+        fails = self.fails(at)
+        accepted_here = np.zeros(len(at), bool)
+        if fails is not None and len(fails.pair):
+            good = accepts(fails, self.item)
+            accepted_here[fails.point] = True
+            accepted_here[fails.point[~good]] = False
+        return accepted_here
+
+
+#: Items with the points at which something of theirs fails.
+Failing = Sequence[tuple[ItemPoints, Flags]]
 
 
 def item_points(bench: Bench, *, together: bool) -> list[ItemPoints]:

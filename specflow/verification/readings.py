@@ -43,6 +43,21 @@ _PASS, _FAIL = int(Verdict.PASS), int(Verdict.FAIL)
 
 
 @dataclass(frozen=True, slots=True)
+class Served:
+    """Pairs (p,) before they are judged: which reading serves which point, its interval and standard uncertainty."""
+
+    record: Rows
+    point: Rows
+    low: Array
+    high: Array
+    u: Array
+
+    def take(self, kept: NDArray[np.bool_] | Rows) -> Served:
+        """Return the pairs chosen."""
+        return Served(self.record[kept], self.point[kept], self.low[kept], self.high[kept], self.u[kept])
+
+
+@dataclass(frozen=True, slots=True)
 class Readings:
     """Pairs (p,): reading ``record[i]`` serves ``point[i]``; sorted by point.
 
@@ -50,9 +65,11 @@ class Readings:
     it is the same everywhere) are in the unit of the limit; ``u``, ``margin``, ``guarded`` in its tolerance unit, NaN
     where there is none. ``margin`` is the distance to the core limit; ``guarded`` that to the acceptance limit (guard
     band, test tolerance, excess uncertainty). ``marginal``: a pass or fail nearer to the limit than U, or than the
-    threshold of the project without one. ``why`` are sentences about what could not be decided.
+    threshold of the project without one. ``why`` are sentences about what could not be decided. ``served`` are the
+    readings before anything was done to them (``low`` and ``high`` are in the bandwidth of the limit).
     """
 
+    served: Served
     record: Rows
     point: Rows
     low: Array
@@ -70,21 +87,6 @@ class Readings:
     def size(self) -> int:
         """How many pairs there are."""
         return len(self.record)
-
-
-@dataclass(frozen=True, slots=True)
-class Served:
-    """Pairs (p,) before they are judged: which reading serves which point, its interval and standard uncertainty."""
-
-    record: Rows
-    point: Rows
-    low: Array
-    high: Array
-    u: Array
-
-    def take(self, kept: NDArray[np.bool_] | Rows) -> Served:
-        """Return the pairs chosen."""
-        return Served(self.record[kept], self.point[kept], self.low[kept], self.high[kept], self.u[kept])
 
 
 @dataclass(frozen=True, slots=True)
@@ -143,6 +145,7 @@ def judge(records: Records, served: Served, judgement: Judgement) -> Readings:
     if why:
         verdict[:] = Verdict.INCONCLUSIVE
     return Readings(
+        served,
         record,
         served.point,
         low,

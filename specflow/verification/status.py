@@ -6,26 +6,23 @@ from collections.abc import Sequence
 from dataclasses import replace
 
 import numpy as np
-from numpy.typing import NDArray
 
 from specflow.errors import ConditionsError, ExpressionError
-from specflow.limits import LimitContext, evaluate_limit, parse_limit
 from specflow.limits.tree import undefined_in
 from specflow.model.base import code_key
 from specflow.model.block import Tier
 from specflow.model.limit import LimitState
-from specflow.model.requirement import Activity, Requirement, RuleName
+from specflow.model.requirement import Activity, Requirement
 from specflow.model.verdict import CloseOut, GoverningPoint, PointsState, RequirementStatus
-from specflow.statistics.decision import AcceptanceInterval, decide, guard_band
 from specflow.verification.activity import ActivityOutcome
 from specflow.verification.applicability import applicability
 from specflow.verification.assessment import Assessment, assess
-from specflow.verification.closeout import label_and_close_out
+from specflow.verification.closeout import label_and_close_out, waived
 from specflow.verification.compliance import Facts, compliance
 from specflow.verification.decisions import Decisions
-from specflow.verification.limit_inputs import limit_columns
-from specflow.verification.points import ItemPoints
-from specflow.verification.waiving import NO_WAIVER, Waiving, waiving
+from specflow.verification.points import Failing
+from specflow.verification.splits import declared
+from specflow.verification.waiving import waiving
 from specflow.verification.workspace import Workspace
 
 
@@ -69,7 +66,6 @@ def own_facts(
         to_be_reviewed=limit.state is LimitState.TBR,
         unallocated=_unallocated(requirement, workspace, decisions),
         planned=any(activity.planned for activity in activities),
-        split_declared=bool(decisions.splits.get(code_key(requirement.id))),
         approved=approved and approval is not None and approval.requirement_revision == requirement.revision,
         nonconformances=decisions.open_nonconformances(requirement.id),
     )
@@ -91,8 +87,9 @@ def _unallocated(requirement: Requirement, workspace: Workspace, decisions: Deci
 def _with_evidence(
     facts: Facts, requirement: Requirement, found: Assessment, workspace: Workspace, decisions: Decisions
 ) -> Facts:
-    outcomes = found.outcomes
+    outcomes, failing = found.outcomes, _failing(found)
     results = [outcome.result for outcome in outcomes]
+    split, remarks = declared(decisions.splits.get(code_key(requirement.id), ()), failing)
     verdicts = frozenset(verdict for outcome in outcomes for verdict in outcome.verdicts)
     return replace(
         facts,
@@ -104,47 +101,14 @@ def _with_evidence(
         and not decisions.conflict_is_settled(requirement.id, workspace.as_of),
         stale=any(outcome.stale for outcome in outcomes),
         marginal=any(result.marginal for result in results),
-        waiving=_waiving(requirement, found, workspace, decisions),
+        split_declared=split,
+        split_remarks=remarks,
+        waiving=waiving(requirement, decisions.waivers.get(code_key(requirement.id), ()), failing, workspace),
     )
 
 
-def _waiving(
-    requirement: Requirement, found: Assessment, workspace: Workspace, decisions: Decisions
-) -> Waiving:
-    waivers = decisions.waivers.get(code_key(requirement.id), ())
-    failing = [pair for outcome in found.outcomes for pair in outcome.failing]
-    if not waivers or not failing:
-        return NO_WAIVER
-
-    def meets(one: ItemPoints, permitted: str) -> NDArray[np.int8]:
-        return _judged_against(permitted, one, requirement, found, workspace)
-
-    def identify(name: str) -> str:
-        return str(getattr(workspace.item(name), "id", name))
-
-    return waiving(requirement, waivers, failing, found.points.columns_lo, meets, identify, workspace.as_of)
-
-
-def _judged_against(
-    permitted: str, one: ItemPoints, requirement: Requirement, found: Assessment, workspace: Workspace
-) -> NDArray[np.int8]:
-    """Return the verdicts of an item's governing readings against the limit that a waiver still asks for."""
-    limit = parse_limit(
-        permitted,
-        unit_hint=requirement.limit.unit,
-        parameter=workspace.dictionary.get(requirement.quantity.parameter),
-    )
-    if limit.unit != requirement.limit.unit:
-        raise ExpressionError(
-            f"it is in {limit.unit or 'no unit'}, the requirement in {requirement.limit.unit}"
-        )
-    every = np.arange(found.points.size)
-    columns = limit_columns(limit, found.points, None, every, every, workspace.declared)
-    bounds = evaluate_limit(limit, LimitContext(columns, workspace.declared, found.points.size))
-    results, rule = one.results, requirement.decision_rule
-    guard = 0.0 if rule.name is RuleName.SIMPLE else guard_band(rule.guard_factor, results.u)
-    interval = AcceptanceInterval(bounds.lower, bounds.upper, bounds.lower_strict, bounds.upper_strict, 1e-9)
-    return decide(rule.name, results.value_low, results.value_high, interval, guard)
+def _failing(found: Assessment) -> Failing:
+    return [pair for outcome in found.outcomes for pair in outcome.failing]
 
 
 def status_from(
@@ -177,7 +141,7 @@ def status_from(
         mismatches=found.mismatches if found is not None else (),
         stale=facts.stale,
         unallocated=facts.unallocated and facts.applicable,
-        waived_by=facts.waiving.covering if facts.fails and facts.waiving.all_covered else (),
+        waived_by=facts.waiving.covering if waived(facts) else (),
         waivers_exceeded=facts.waiving.exceeded,
     )
 
@@ -200,7 +164,7 @@ def _or_infinite(value: float) -> float:
 
 def _said(requirement: Requirement, facts: Facts, found: Assessment, decisions: Decisions) -> Sequence[str]:
     """Return plain sentences about the status, most important first."""
-    said = [*facts.waiving.exceeded]
+    said = [*facts.waiving.exceeded, *facts.split_remarks]
     approval = decisions.latest_approval(requirement.id)
     ready = compliance(facts).value
     if approval is not None and approval.decision == "closed":

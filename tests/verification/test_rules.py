@@ -328,7 +328,12 @@ def test_a_waiver_does_not_make_up_for_missing_points() -> None:
 
 def test_a_declared_split_makes_partially_compliant_and_missing_evidence_never_does() -> None:
     split = DeclaredSplit(
-        id="D-1", requirement="R-1", scope_not_met="28.75 GHz", reason="known", by="A", on=AS_OF
+        id="D-1",
+        requirement="R-1",
+        scope_not_met="frequency in 28.7..28.8 GHz",
+        reason="known",
+        by="A",
+        on=AS_OF,
     )
     assert failing_with(split).label is Label.PARTIALLY_COMPLIANT
     assert status_of(split, T_1=some_evidence([21, float("nan"), 21])).label is Label.PARTIALLY_VERIFIED
