@@ -14,6 +14,7 @@ from typing import Any
 
 import xlsxwriter
 
+from specflow.exporters.formula_sheets import write_formula_sheet
 from specflow.model.report import Align, CellTone, Report, ReportCell, ReportRow, ReportTable
 
 title = "Workbook"
@@ -47,6 +48,10 @@ def render(report: Report) -> bytes:
     targets = _targets(parts)
     for part in parts:
         _write_part(book, part, styles, targets)
+    names = [part.sheet for part in parts]
+    for sheet in report.sheets:
+        names.append(sheet_name(sheet.title, names))
+        write_formula_sheet(book, sheet, names[-1])
     book.close()
     return buffer.getvalue()
 

@@ -29,6 +29,17 @@ class Way(StrEnum):
     MONTE_CARLO = "monte carlo"
 
 
+class LineForm(StrEnum):
+    """How the law takes the value that a line states."""
+
+    AS_IT_IS = "as it is"
+    LOSS = "loss"  # a gain with the other sign
+    TEMPERATURE = "temperature"  # a noise temperature as a noise figure
+    SIGNAL_TO_ERROR = "signal to error"  # a ratio in dB as an error vector
+    LEAKAGE = "leakage"  # an unwanted level in dBc as an error vector
+    PHASE_NOISE = "phase noise"  # a phase error in degrees as an error vector
+
+
 @dataclass(frozen=True, slots=True, eq=False)
 class LineOutcome:
     """A line with its value (n,) in its own unit, and the figure that the law takes from it.
@@ -45,6 +56,7 @@ class LineOutcome:
     taken: Floats
     unit: str
     figure: str
+    form: LineForm
     port: str
     factor: float = 1.0
     offset: float = 0.0

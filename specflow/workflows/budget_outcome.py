@@ -25,6 +25,15 @@ from specflow.budgets import (
     worst_case,
 )
 from specflow.budgets.figures import of_elements
+from specflow.budgets.forms import (
+    AS_IT_IS,
+    CARRIER,
+    IMAGE,
+    LOSS,
+    PHASE_NOISE,
+    SIGNAL_TO_ERROR,
+    TEMPERATURE,
+)
 from specflow.budgets.root_sum import MOST_BEND
 from specflow.calculators.decibel import BOLTZMANN, T0
 from specflow.calculators.noise_cascade import cumulative_noise_figure
@@ -33,6 +42,7 @@ from specflow.model.budget import Budget
 from specflow.model.budget_outcome import (
     BudgetOutcome,
     ChanceOutcome,
+    LineForm,
     LineOutcome,
     QuantityOutcome,
     ServedOutcome,
@@ -52,6 +62,16 @@ _ASSUMES = {
     Way.RSS: "lines independent unless a correlation is stated, law near to linear over the tolerances "
     f"(bend below {MOST_BEND:g} of the sum)",
     Way.MONTE_CARLO: "the distributions and correlations of the lines as stated; one specimen at all conditions",
+}
+
+_FORMS = {
+    id(AS_IT_IS): LineForm.AS_IT_IS,
+    id(LOSS): LineForm.LOSS,
+    id(TEMPERATURE): LineForm.TEMPERATURE,
+    id(SIGNAL_TO_ERROR): LineForm.SIGNAL_TO_ERROR,
+    id(IMAGE): LineForm.SIGNAL_TO_ERROR,
+    id(CARRIER): LineForm.LEAKAGE,
+    id(PHASE_NOISE): LineForm.PHASE_NOISE,
 }
 
 Step = Callable[[str], None]
@@ -172,6 +192,7 @@ def _line(read: ReadLine, result: BudgetResult) -> LineOutcome:
         taken=np.broadcast_to(taken, (size,)),
         unit=read.role.unit,
         figure=read.role.figure,
+        form=_FORMS[id(read.role.form)],
         port=read.role.port,
         factor=factor,
         offset=offset,

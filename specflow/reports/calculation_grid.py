@@ -1,0 +1,73 @@
+"""The grid that a worksheet is made on: cells put in their places, and terms by which others refer to them."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass, field
+
+from specflow.model.formula_sheet import CellLook, FormulaCell
+from specflow.model.origin import column_letters
+from specflow.reports.figures import DASH
+
+
+@dataclass(frozen=True, slots=True)
+class Term:
+    """A part of a formula and the value that it has."""
+
+    text: str
+    value: float
+
+    def __add__(self, other: Term) -> Term:
+        return Term(f"{self.text}+{other.text}", self.value + other.value)
+
+    def __sub__(self, other: Term) -> Term:
+        return Term(f"{self.text}-({other.text})", self.value - other.value)
+
+
+def plain(value: float) -> str:
+    """Return a number as formulas take it."""
+    return repr(int(value)) if float(value).is_integer() and abs(value) < 1e15 else repr(float(value))
+
+
+def cell_name(row: int, column: int, *, fixed: bool = False) -> str:
+    """Return the reference of a cell, rows and columns counted from 0."""
+    letters = column_letters(column + 1)
+    return f"${letters}${row + 1}" if fixed else f"{letters}{row + 1}"
+
+
+@dataclass(slots=True)
+class Grid:
+    """Rows being filled; a cell put there returns the term by which others refer to it."""
+
+    rows: list[list[FormulaCell | None]] = field(default_factory=list)
+
+    def put(self, row: int, column: int, cell: FormulaCell) -> None:
+        """Put a cell in its place."""
+        while len(self.rows) <= row:
+            self.rows.append([])
+        line = self.rows[row]
+        line.extend([None] * (column + 1 - len(line)))
+        line[column] = cell
+
+    def text(self, row: int, column: int, words: str, look: CellLook = CellLook.PLAIN) -> None:
+        """Put words."""
+        self.put(row, column, FormulaCell(text=words, look=look))
+
+    def number(
+        self, row: int, column: int, value: float, look: CellLook = CellLook.INPUT, format: str = "0.00##"
+    ) -> Term:
+        """Put a number; one without a finite value becomes words."""
+        if math.isfinite(value):
+            self.put(row, column, FormulaCell(number=value, look=look, format=format))
+        else:
+            self.text(row, column, "no bound" if math.isinf(value) else DASH, look)
+        return Term(cell_name(row, column, fixed=True), value)
+
+    def formula(
+        self, row: int, column: int, term: Term, look: CellLook = CellLook.FORMULA, format: str = "0.0000"
+    ) -> Term:
+        """Put a formula with its value; one without a finite value shows "no bound" instead."""
+        cell = FormulaCell(formula=f"={term.text}", look=look, format=format)
+        value = {"number": term.value} if math.isfinite(term.value) else {"text": "no bound"}
+        self.put(row, column, cell.model_copy(update=value))
+        return Term(cell_name(row, column, fixed=True), term.value)

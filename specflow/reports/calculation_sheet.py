@@ -1,0 +1,135 @@
+"""A budget as a worksheet that calculates: a reviewer follows the chain by hand, beside the tool's own values.
+
+Every cell is made with its formula and the value that this has, so that a program which does not calculate shows it
+too. Formulas hold numbers and references only.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable
+
+from specflow.model.budget_outcome import BudgetOutcome, QuantityOutcome
+from specflow.model.formula_sheet import CellLook, FormulaSheet
+from specflow.reports.budget import budget_title, position_words
+from specflow.reports.calculation_chain import ChainTable
+from specflow.reports.calculation_grid import Grid, Term
+from specflow.reports.calculation_quantities import quantity_term
+
+Named = Callable[[str], str]
+_FIRST_ROW = 4
+
+
+def calculation_sheet(outcome: BudgetOutcome, place: int, named: Named) -> FormulaSheet:
+    """Return the worksheet of a budget at one place of evaluation."""
+    return _Sheet(outcome, place, named).made()
+
+
+class _Sheet:
+    """The worksheet while it is made."""
+
+    def __init__(self, outcome: BudgetOutcome, place: int, named: Named) -> None:
+        self.outcome = outcome
+        self.place = place
+        self.named = named
+        self.grid = Grid()
+        self._head()
+        self.chain = ChainTable(outcome, place, named, self.grid, _FIRST_ROW)
+
+    def made(self) -> FormulaSheet:
+        """Finish the sheet."""
+        self._results()
+        return FormulaSheet(
+            title=f"Budget {self.outcome.budget.id}",
+            widths=(7, 30, 22, *(14 for _ in range(24))),
+            rows=tuple(tuple(row) for row in self.grid.rows),
+        )
+
+    def _head(self) -> None:
+        budget, grid = self.outcome.budget, self.grid
+        grid.text(0, 0, f"Budget {budget_title(self.outcome)}", CellLook.TITLE)
+        grid.text(
+            1,
+            0,
+            f"{budget.law.value}, revision {budget.revision}, at {self.outcome.places[self.place]} (the worst "
+            "condition point). Cells on a light ground are given, the others are calculated from them in this sheet.",
+            CellLook.NOTE,
+        )
+        grid.text(
+            2,
+            0,
+            "Change a given value to see what follows. The tool's own values beside the formulas are fixed numbers.",
+            CellLook.NOTE,
+        )
+
+    # Results
+
+    def _results(self) -> None:
+        self.chain.headers(
+            "", "Result", "Requirement", "By hand", "Tool", "Difference", "Unit", "Lower limit", "Upper limit",
+            "Margin by hand", "Margin, tool", "Difference", "Reserve",
+        )  # fmt: skip
+        for quantity in self.outcome.quantities:
+            self._result(quantity)
+        self.chain.row += 1
+        self._so_far()
+
+    def _result(self, quantity: QuantityOutcome) -> None:
+        at, grid = self.chain.row, self.grid
+        last = len(self.outcome.positions) - 1
+        grid.text(at, 1, self.named(quantity.parameter))
+        hand = grid.formula(at, 3, quantity_term(self.chain, quantity.parameter, last))
+        tool = grid.number(at, 4, float(quantity.result[self.place]), CellLook.TOOL, "0.0000")
+        self._difference(at, 5, hand, tool)
+        grid.text(at, 6, quantity.unit)
+        for one in quantity.served:
+            grid.text(self.chain.row, 2, one.requirement.id)
+            if one.unit == quantity.unit:
+                self._margin(
+                    hand, one.lower[self.place], one.upper[self.place], one.reserve, one.margin[self.place]
+                )
+            self.chain.row += 1
+        self.chain.row += not quantity.served
+
+    def _margin(self, hand: Term, lower: float, upper: float, reserve: float, margin: float) -> None:
+        at, grid = self.chain.row, self.grid
+        sides = []
+        low = grid.number(at, 7, float(lower))
+        high = grid.number(at, 8, float(upper))
+        kept = grid.number(at, 12, float(reserve))
+        if math.isfinite(lower):
+            sides.append(Term(f"{hand.text}-{low.text}", hand.value - low.value))
+        if math.isfinite(upper):
+            sides.append(Term(f"{high.text}-{hand.text}", high.value - hand.value))
+        if not sides or math.isnan(margin):
+            return
+        least = min(term.value for term in sides) - kept.value
+        by_hand = grid.formula(
+            at, 9, Term(f"MIN({','.join(term.text for term in sides)})-{kept.text}", least)
+        )
+        tool = grid.number(at, 10, float(margin), CellLook.TOOL, "0.0000")
+        self._difference(at, 11, by_hand, tool)
+
+    def _difference(self, row: int, column: int, hand: Term, tool: Term) -> None:
+        if math.isfinite(tool.value) and math.isfinite(hand.value):
+            term = Term(f"{hand.text}-{tool.text}", hand.value - tool.value)
+            self.grid.formula(row, column, term, CellLook.DIFFERENCE, "0.0E+00")
+
+    def _so_far(self) -> None:
+        """Put the cumulative values by hand, the tool's and their difference, three columns a quantity."""
+        titles = [f"{self.named(one.parameter)} [{one.unit}]" for one in self.outcome.quantities]
+        self.chain.headers(
+            "#", "Behind block", "", *(t for title in titles for t in (f"∑ {title}", "Tool", "Difference"))
+        )
+        for row, position in enumerate(self.outcome.positions):
+            self.grid.number(self.chain.row, 0, position.order, CellLook.PLAIN, "0")
+            self.grid.text(self.chain.row, 1, position_words(self.outcome, row))
+            for number, one in enumerate(self.outcome.quantities):
+                column = 3 + 3 * number
+                hand = self.grid.formula(
+                    self.chain.row, column, quantity_term(self.chain, one.parameter, row)
+                )
+                value = float(one.cumulative[row, self.place])
+                tool = self.grid.number(self.chain.row, column + 1, value, CellLook.TOOL, "0.0000")
+                self._difference(self.chain.row, column + 2, hand, tool)
+            self.chain.row += 1
