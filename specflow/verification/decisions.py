@@ -1,4 +1,8 @@
-"""What people decided, by the requirement it is about: waivers, splits, approvals, dispositions, nonconformances."""
+"""What people decided, by the requirement it is about: waivers, splits, approvals, dispositions, nonconformances.
+
+As seen on the day of judgement: what was decided later is not known yet. A waiver decided later is still requested, a
+nonconformance closed later is still open; a decision without a date counts.
+"""
 
 from __future__ import annotations
 
@@ -11,7 +15,10 @@ from typing import TypeVar
 from specflow.model.base import code_key
 from specflow.model.budget import Allocation
 from specflow.model.decision import Approval, DeclaredSplit, Disposition, Nonconformance, Waiver
+from specflow.model.evidence import EvidenceTable
 from specflow.model.snapshot import Snapshot
+from specflow.model.verdict import Conflict
+from specflow.verification.dates import is_after
 
 D = TypeVar("D")
 
@@ -32,14 +39,19 @@ class Decisions:
     allocated: Mapping[str, Sequence[str]]
 
     @classmethod
-    def of(cls, snapshot: Snapshot) -> Decisions:
-        """Collect the decisions of a snapshot."""
+    def of(cls, snapshot: Snapshot, as_of: date) -> Decisions:
+        """Collect the decisions of a snapshot that were taken by that day."""
+        waivers = (_seen_waiver(one, as_of) for one in snapshot.all(Waiver))
+        reports = (_seen_report(one, as_of) for one in snapshot.all(Nonconformance))
+        splits = (one for one in snapshot.all(DeclaredSplit) if one.on <= as_of)
+        approvals = (one for one in snapshot.all(Approval) if one.on <= as_of)
+        dispositions = (one for one in snapshot.all(Disposition) if one.on <= as_of)
         return cls(
-            _by(snapshot.all(Waiver), lambda waiver: waiver.requirement),
-            _by(snapshot.all(DeclaredSplit), lambda split: split.requirement),
-            _by(snapshot.all(Approval), lambda approval: approval.requirement),
-            _by(snapshot.all(Nonconformance), lambda report: report.requirement),
-            _by(snapshot.all(Disposition), lambda disposition: disposition.subject),
+            _by((one for one in waivers if one is not None), lambda waiver: waiver.requirement),
+            _by(splits, lambda split: split.requirement),
+            _by(approvals, lambda approval: approval.requirement),
+            _by(reports, lambda report: report.requirement),
+            _by(dispositions, lambda disposition: disposition.subject),
             {
                 key: [allocation.child for allocation in allocations]
                 for key, allocations in _by(snapshot.all(Allocation), lambda one: one.parent).items()
@@ -47,27 +59,45 @@ class Decisions:
         )
 
     def latest_approval(self, requirement: str) -> Approval | None:
-        """Return the last decision of the board on a requirement."""
+        """Return the last decision of the board on a requirement; of one day the one that kept it open."""
         approvals = self.approvals.get(code_key(requirement), ())
-        return max(approvals, key=lambda approval: approval.on, default=None)
+        return max(approvals, key=lambda one: (one.on, one.decision == "kept open"), default=None)
 
     def open_nonconformances(self, requirement: str) -> tuple[str, ...]:
         """Return the ids of open nonconformances against a requirement."""
         reports = self.nonconformances.get(code_key(requirement), ())
         return tuple(report.id for report in reports if report.state == "open")
 
-    def conflict_is_settled(self, requirement: str, as_of: date) -> bool:
-        """Whether somebody disposed of conflicting evidence of a requirement by that day, and the decision stands.
+    def settles(self, requirement: str, conflict: Conflict, snapshot: Snapshot, as_of: date) -> bool:
+        """Whether somebody disposed of conflicting evidence of a requirement, and the decision stands for this one.
 
-        Of several the last one decided holds, as it does for findings.
+        Of several the last one decided holds, as it does for findings. It settles the conflicts of that day: evidence
+        that was accepted later makes a new one.
         """
         decided = [
             disposition
             for disposition in self.dispositions.get(code_key(requirement), ())
-            if code_key(disposition.rule) == CONFLICT_RULE and disposition.on <= as_of
+            if code_key(disposition.rule) == CONFLICT_RULE
         ]
         last = max(reversed(decided), key=lambda disposition: disposition.on, default=None)
-        return last is not None and (last.expires_on is None or last.expires_on >= as_of)
+        if last is None or (last.expires_on is not None and last.expires_on < as_of):
+            return False
+        tables = (snapshot.find(EvidenceTable, one.table) for one in (conflict.first, conflict.second))
+        return not any(table is not None and is_after(table.accepted_at, last.on) for table in tables)
+
+
+def _seen_waiver(waiver: Waiver, as_of: date) -> Waiver | None:
+    if waiver.requested_on is not None and waiver.requested_on > as_of:
+        return None
+    if waiver.decided_on is not None and waiver.decided_on > as_of:
+        return waiver.model_copy(update={"state": "requested"})
+    return waiver
+
+
+def _seen_report(report: Nonconformance, as_of: date) -> Nonconformance:
+    if report.state == "closed" and report.decided_on is not None and report.decided_on > as_of:
+        return report.model_copy(update={"state": "open"})
+    return report
 
 
 def _by(documents: Iterable[D], subject: Callable[[D], str | None]) -> Mapping[str, Sequence[D]]:

@@ -26,7 +26,7 @@ def evaluate(
     Never raises for what evidence or documents contain: what cannot be judged is said in the status.
     """
     workspace = Workspace(snapshot, dictionary, as_of)
-    decisions = Decisions.of(snapshot)
+    decisions = Decisions.of(snapshot, as_of)
     asked = None if only is None else {code_key(one) for one in only}
     wanted = _wanted(snapshot, decisions, asked)
     workspace.fetch(requirement for requirement in wanted if not requirement.met_by_lower_level)

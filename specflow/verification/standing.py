@@ -3,7 +3,8 @@
 *Withdrawn*: found wrong. *Superseded*: replaced by named rows of another table; a failing reading stays open until
 the supersession names it *and* an accepted reading of the successor decides the same point (see ``grid``). *Stale*: a
 change record took effect after the reading was taken. *Provisional*: not accepted yet, dated after the day of
-judgement, or taken with an instrument whose calibration had run out.
+judgement, or taken with an instrument whose calibration had run out; without a date, if that was before the reading
+was accepted.
 """
 
 from __future__ import annotations
@@ -23,6 +24,7 @@ from specflow.model.evidence import EvidenceTable, ItemChange, Supersession, Wit
 from specflow.model.requirement import Method
 from specflow.model.snapshot import Snapshot
 from specflow.model.verdict import Standing
+from specflow.verification.dates import day_of, is_after
 
 Codes = NDArray[np.int8]
 #: Rows that were replaced by name, and the keys of the tables that replace them (and of those that replace these).
@@ -71,14 +73,16 @@ class StandingRegister:
 
     @classmethod
     def of(cls, snapshot: Snapshot, as_of: date) -> StandingRegister:
-        """Collect the records of a snapshot; changes that take effect later than ``as_of`` do not count yet."""
+        """Collect the records of a snapshot; what was recorded or takes effect later than ``as_of`` does not count."""
         withdrawals: dict[str, list[Withdrawal]] = defaultdict(list)
         supersessions: dict[str, list[Supersession]] = defaultdict(list)
         changes: dict[str, list[ItemChange]] = defaultdict(list)
         for withdrawal in snapshot.all(Withdrawal):
-            withdrawals[code_key(withdrawal.table)].append(withdrawal)
+            if not is_after(withdrawal.at, as_of):
+                withdrawals[code_key(withdrawal.table)].append(withdrawal)
         for supersession in snapshot.all(Supersession):
-            supersessions[code_key(supersession.earlier)].append(supersession)
+            if not is_after(supersession.at, as_of):
+                supersessions[code_key(supersession.earlier)].append(supersession)
         for change in snapshot.all(ItemChange):
             if change.effective <= as_of:
                 changes[code_key(change.block)].append(change)
@@ -135,6 +139,7 @@ class StandingRegister:
         if table.provisional or not table.accepted_by:
             yield "not accepted yet", every
         taken = _dated(table, dates)
+        undated = every if taken is None else ~taken
         if taken is not None:
             late = ~_before_date(table, dates, self.as_of.isoformat(), inclusive=True) & taken
             yield f"dated after the day of judgement ({self.as_of})", late
@@ -143,6 +148,8 @@ class StandingRegister:
             if due is not None and taken is not None:
                 expired = taken & ~_before_date(table, dates, due.isoformat(), inclusive=True)
                 yield f"the calibration of {instrument.asset} had run out on {due}", expired
+            if due is not None and due < (day_of(table.accepted_at) or self.as_of):
+                yield f"without a date, and the calibration of {instrument.asset} ran out on {due}", undated
 
     def _stale(
         self, table: EvidenceTable, parameter: str, items: TextColumn, dates: TextColumn | None

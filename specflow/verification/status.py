@@ -97,8 +97,10 @@ def _with_evidence(
         complete=all(result.state is PointsState.FULLY_COVERED for result in results),
         verdicts=verdicts,
         some_proved=any(result.k for result in results),
-        conflicting=bool(found.conflicts)
-        and not decisions.conflict_is_settled(requirement.id, workspace.as_of),
+        conflicting=any(
+            not decisions.settles(requirement.id, conflict, workspace.snapshot, workspace.as_of)
+            for conflict in found.conflicts
+        ),
         stale=any(outcome.stale for outcome in outcomes),
         marginal=any(result.marginal for result in results),
         split_declared=split,

@@ -445,8 +445,8 @@ def test_an_approval_of_an_earlier_revision_does_not_close_this_one() -> None:
 
 
 def test_the_latest_decision_of_the_board_stands() -> None:
-    kept = approval(id="A-2", decision="kept open", on=date(2026, 6, 2), note="more corners")
-    status = status_of(approval(), kept)
+    kept = approval(id="A-2", decision="kept open", on=date(2026, 5, 31), note="more corners")
+    status = status_of(approval(on=date(2026, 5, 30)), kept)
     assert status.label is Label.READY
     assert any("more corners" in remark for remark in status.remarks)
 
