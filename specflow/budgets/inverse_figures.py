@@ -30,7 +30,7 @@ def line_value(read: ReadLine, figure: Floats, dictionary: Dictionary) -> Floats
         read.convert.source,
         log_factor=parameter.log_factor if parameter is not None else None,
     )
-    return np.asarray(back(inner))
+    return np.asarray(back(inner), np.float64)
 
 
 def _inner(read: ReadLine, figure: Floats) -> Floats:
@@ -52,7 +52,7 @@ def _searched(read: ReadLine, figure: Floats) -> Floats:
         middle = (low + high) / 2.0
         above = (read.role.form.value(middle) - figure) * read.role.form.rises > 0
         low, high = np.where(above, low, middle), np.where(above, middle, high)
-    return (low + high) / 2.0
+    return np.asarray((low + high) / 2.0)
 
 
 def figure_of_line(chain: Chain, read: ReadLine, at_position: Floats, gain_db: Floats) -> Floats:

@@ -76,8 +76,8 @@ def solve_line(
 ) -> Solution:
     """Return what one line may be, the same at all places, so that all limits hold with their reserves.
 
-    Closed form where ``calculators.inverse`` has it, else the root is bracketed. Raises InfeasibleError that says by how
-    much even the best value misses, of which requirement and where; SpecflowError as ``evaluate_budget``.
+    Closed form where ``calculators.inverse`` has it, else the root is bracketed. Raises InfeasibleError that says by
+    how much even the best value misses, of which requirement and where; SpecflowError as ``evaluate_budget``.
     """
     probe = Probe.of(budget, snapshot, dictionary, values=values)
     number = probe.number(unknown)

@@ -1,0 +1,275 @@
+"""Share what a limit leaves over the blocks: equally, or in proportion to what they are estimated at.
+
+Positions that are passive, or said to be fixed, take their share first. Gains that are not shared stand at the worst
+end of their tolerance, so that the shares hold for every block that keeps its own window.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Collection, Sequence
+from dataclasses import dataclass
+from typing import Literal
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.budgets.allotment import (
+    Allotment,
+    ends_of,
+    joined,
+    rounded_safely,
+    rounded_widely,
+    taken_first,
+)
+from specflow.budgets.allowed import Ends, worst_corner
+from specflow.budgets.chain import Overrides
+from specflow.budgets.closure import Closure, closure_test
+from specflow.budgets.contribution import Contribution, contribution
+from specflow.budgets.figures import Figures
+from specflow.budgets.inverse_figures import figure_of_line, line_value
+from specflow.budgets.plain_shares import share_plainly
+from specflow.budgets.probe import Probe, Target
+from specflow.calculators.decibel import gain_before
+from specflow.errors import CalculationError, InfeasibleError
+from specflow.model.base import code_key
+from specflow.model.budget import Budget
+from specflow.model.snapshot import Snapshot
+from specflow.parameters import Dictionary
+
+Floats = NDArray[np.float64]
+Way = Literal["equal", "proportional"]
+_STEPS = 110
+_RANGE = 30.0  # decades in which a scale is looked for
+_PASSES = 3
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Apportionment:
+    """Allotments for the blocks of a budget, and whether the system closes with them."""
+
+    budget: Budget
+    way: str
+    allotments: tuple[Allotment, ...]
+    closure: Closure
+    binding: tuple[str, ...]
+    notes: tuple[str, ...] = ()
+
+
+def apportion(
+    budget: Budget,
+    snapshot: Snapshot,
+    dictionary: Dictionary,
+    *,
+    way: Way = "equal",
+    fixed: Collection[str] = (),
+    values: Overrides | None = None,
+) -> Apportionment:
+    """Return what each block may have so that all limits of a budget hold at all places, reserves kept back.
+
+    ``fixed`` names blocks that keep their figures besides the passive ones. Every share is in the terms in which its
+    law adds: excess noise at the input, distortion, power, squared error; gains and losses share the margin in dB.
+
+    Raises InfeasibleError where what is taken first leaves nothing to share, with by how much; SpecflowError as
+    ``evaluate_budget``.
+    """
+    probe = Probe.of(budget, snapshot, dictionary, values=values)
+    plan = plan_shares(probe, fixed)
+    first, notes = taken_first(probe, plan.first)
+    known = {one.key: one for one in map(rounded_widely, joined(first, f"budget {budget.id}"))}
+    shares: list[Allotment] = []
+    binding: list[str] = []
+    for target, numbers in sorted(
+        plan.shared, key=lambda pair: contribution(pair[0].output, budget) is not None
+    ):
+        law = contribution(target.output, budget)
+        if law is None:
+            found, said = share_plainly(probe, target, numbers, ends_of(probe, known), way)
+        else:
+            found, said = _shared(probe, target, law, numbers, ends_of(probe, known), way)
+        shares += found
+        binding += said
+        known |= {one.key: one for one in map(rounded_safely, joined(shares, f"budget {budget.id}"))}
+    closure = closure_test(probe, known)
+    return Apportionment(budget, way, tuple(known.values()), closure, tuple(binding), (*notes, *plan.notes))
+
+
+@dataclass(frozen=True, slots=True)
+class SharePlan:
+    """Which lines each limit is shared over, and which lines take what they need first."""
+
+    shared: tuple[tuple[Target, tuple[int, ...]], ...]
+    first: tuple[int, ...]
+    notes: tuple[str, ...]
+
+
+def plan_shares(probe: Probe, fixed: Collection[str] = ()) -> SharePlan:
+    """Return which lines are shared for which limit. CalculationError where no line is left to share a limit."""
+    kept = {code_key(name) for name in fixed}
+    unknown = kept - {code_key(position.block) for position in probe.chain.positions}
+    if unknown:
+        raise CalculationError(
+            f"no block {sorted(unknown)[0]} stands in the budget", where=f"budget {probe.budget.id}",
+            hint=f"its blocks are {', '.join(position.block for position in probe.chain.positions)}",
+        )  # fmt: skip
+    shared: list[tuple[Target, tuple[int, ...]]] = []
+    taken: set[int] = set()
+    for target in probe.targets:
+        numbers = _sharing(probe, target, kept)
+        if not numbers:
+            raise CalculationError(
+                f"nothing is left to share {target.name} ({target.output.parameter}) over",
+                where=f"budget {probe.budget.id}",
+                hint="every position is passive or fixed; free one of them",
+            )
+        shared.append((target, numbers))
+        taken.update(numbers)
+    first = tuple(number for number in range(len(probe.chain.lines)) if number not in taken)
+    return SharePlan(tuple(shared), first, ())
+
+
+def _sharing(probe: Probe, target: Target, kept: Collection[str]) -> tuple[int, ...]:
+    law = contribution(target.output, probe.budget)
+    figure = law.figure if law is not None else ("amount" if "amount" in target.output.needs else "gain")
+    return tuple(
+        number
+        for number, read in enumerate(probe.chain.lines)
+        if read.role.figure == figure
+        and not probe.chain.positions[read.row].passive
+        and code_key(read.line.block) not in kept
+    )
+
+
+def _shared(
+    probe: Probe,
+    target: Target,
+    law: Contribution,
+    numbers: Sequence[int],
+    ends: list[Ends | None],
+    way: Way,
+) -> tuple[list[Allotment], list[str]]:
+    """Share one limit: all contributions grow together from nothing until the margin is gone."""
+    for number in numbers:
+        ends[number] = None
+    scale = np.zeros(probe.size)
+    changes: dict[int, Floats] = {}
+    for _ in range(_PASSES):
+        corner = worst_corner(probe, target, ends, changes)
+        start = dict(enumerate(corner.values))
+        parts = _parts(probe, law, numbers, start, way, target)
+        before, scale = scale, _scale(probe, target, law, numbers, start, parts)
+        changes = _values(probe, law, numbers, start, parts, scale)
+        if np.allclose(before, scale, rtol=0, atol=1e-9):
+            break
+    words = f"{way} share of {target.name}"
+    found = [_allotment(probe, number, value, law.at_most, words) for number, value in changes.items()]
+    return found, [_binding(probe, number, value, target, law.at_most) for number, value in changes.items()]
+
+
+def _parts(
+    probe: Probe,
+    law: Contribution,
+    numbers: Sequence[int],
+    start: dict[int, Floats],
+    way: Way,
+    target: Target,
+) -> dict[int, Floats]:
+    """Return the proportions in which contributions grow, each (n,)."""
+    size = probe.size
+    if way == "equal":
+        return {number: np.ones(size) for number in numbers}
+    estimate = {number: probe.chain.lines[number].values for number in numbers}
+    figures = probe.figures({**start, **estimate})
+    parts = {}
+    for number in numbers:
+        row = probe.chain.lines[number].row
+        parts[number] = np.broadcast_to(law.of(figures[law.figure][row], _front(figures, row)), (size,))
+    if np.any(sum(parts.values()) == 0):
+        raise CalculationError(
+            f"no shared position contributes to {target.name} by its estimate",
+            where=f"budget {probe.budget.id}",
+            hint="estimate one that does, or share equally",
+        )
+    return parts
+
+
+def _front(figures: Figures, row: int) -> Floats:
+    """Return the linear gain in front of a position; 1 in a sum, which has no chain."""
+    gain = figures.arrays.get("gain")
+    return np.ones(1) if gain is None else np.asarray(gain_before(gain)[row])
+
+
+def _values(
+    probe: Probe,
+    law: Contribution,
+    numbers: Sequence[int],
+    start: dict[int, Floats],
+    parts: dict[int, Floats],
+    scale: Floats,
+) -> dict[int, Floats]:
+    """Return the values of the shared lines for a scale (n,) in decades."""
+    figures = probe.figures(start)
+    gains = figures.arrays.get("gain")
+    values = {}
+    for number in numbers:
+        read = probe.chain.lines[number]
+        with np.errstate(divide="ignore"):
+            at_position = law.figure_for(parts[number] * 10.0**scale, _front(figures, read.row))
+        at_position = np.clip(at_position, -1e4, 1e4)
+        gain = gains[read.row] if gains is not None else np.zeros(1)
+        values[number] = line_value(
+            read, figure_of_line(probe.chain, read, at_position, gain), probe.dictionary
+        )
+    return values
+
+
+def _scale(
+    probe: Probe,
+    target: Target,
+    law: Contribution,
+    numbers: Sequence[int],
+    start: dict[int, Floats],
+    parts: dict[int, Floats],
+) -> Floats:
+    """Return the greatest scale (n,), in decades, at which the margin is not gone; everywhere by itself."""
+    row = probe.targets.index(target)
+
+    def margin(scale: Floats) -> Floats:
+        changes = {**start, **_values(probe, law, numbers, start, parts, scale)}
+        found = probe.margins(changes)[row]
+        return np.where(np.isnan(found), np.inf, found)
+
+    low, high = np.full(probe.size, -_RANGE), np.full(probe.size, _RANGE)
+    nothing = margin(low)
+    if np.any(nothing < 0):
+        place = int(np.argmin(nothing))
+        raise InfeasibleError(
+            f"{target.name}: infeasible, and short by {-float(nothing[place]):.3g} {target.bar.margin_unit} at "
+            f"{probe.words(place)}: what is taken first leaves nothing to share",
+            where=f"budget {probe.budget.id}",
+            hint="relax the limit or the reserve, or change what is passive or fixed",
+        )
+    for _ in range(_STEPS):
+        middle = (low + high) / 2.0
+        holds = margin(middle) >= 0
+        low, high = np.where(holds, middle, low), np.where(holds, high, middle)
+    return low
+
+
+def _allotment(probe: Probe, number: int, value: Floats, at_most: bool, words: str) -> Allotment:
+    read = probe.chain.lines[number]
+    is_upper = at_most == (read.role.form.rises > 0)
+    low = -math.inf if is_upper else float(np.max(value))
+    high = float(np.min(value)) if is_upper else math.inf
+    now = read.values
+    line = read.line
+    return Allotment(
+        line.block, line.parameter, line.unit, low, high, True, float(now.min()), float(now.max()), words
+    )
+
+
+def _binding(probe: Probe, number: int, value: Floats, target: Target, at_most: bool) -> str:
+    read = probe.chain.lines[number]
+    is_upper = at_most == (read.role.form.rises > 0)
+    place = int(np.argmin(value) if is_upper else np.argmax(value))
+    return f"{read.line.block} {read.line.parameter}: {target.name} at {probe.words(place)}"

@@ -1,0 +1,215 @@
+"""Sharing a limit: hand-solved shares, what is taken first, closure, and what cannot be shared."""
+
+from __future__ import annotations
+
+import math
+from typing import Any
+
+import numpy as np
+import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
+
+from specflow.budgets.allotment import Allotment
+from specflow.budgets.apportion import Apportionment, apportion
+from specflow.budgets.evaluate import evaluate_budget
+from specflow.calculators.apportionment import equal_share_iip3, equal_share_noise_figures, proportional_iip3
+from specflow.errors import CalculationError, InfeasibleError
+from specflow.model.budget import Budget
+from specflow.parameters import load_dictionary
+from tests.budgets.chains import a_chain, project_of
+from tests.builders import a_quantity, a_requirement, at_least, at_most, between
+
+DICTIONARY = load_dictionary()
+GAINS = (18.0, -2.5, -7.0, 20.0)
+WITHIN = {"minus": 0.5, "plus": 0.5, "meaning": "limits"}
+
+
+def shared(budget: Budget, *, way: str = "equal", fixed: tuple[str, ...] = (), **more: Any) -> Apportionment:
+    """Apportion a budget."""
+    return apportion(budget, project_of(budget, **more), DICTIONARY, way=way, fixed=fixed)  # type: ignore[arg-type]
+
+
+def of(found: Apportionment, block: str, parameter: str) -> Allotment:
+    """Return one allotment."""
+    return next(one for one in found.allotments if (one.block, one.parameter) == (block, parameter))
+
+
+def exact_chain(**fields: Any) -> Budget:
+    """Return four stages with their noise figures and intercepts."""
+    return a_chain(
+        {"block": "A", "gain": GAINS[0], "noise_figure": 1.2, "iip3": -2.0},
+        {"block": "B", "gain": GAINS[1], "noise_figure": 2.5, "iip3": 30.0},
+        {"block": "C", "gain": GAINS[2], "noise_figure": 7.0, "iip3": 6.0},
+        {"block": "D", "gain": GAINS[3], "noise_figure": 4.0, "iip3": 12.0},
+        **fields,
+    )
+
+
+def test_equal_shares_of_noise_are_those_of_the_formula() -> None:
+    # rf-budget.md section 8: F_i = 1 + G_b(i)(F_t - 1)/n.
+    found = shared(exact_chain(), limit=at_most(3.0))
+    formula = equal_share_noise_figures(3.0, list(GAINS))
+    for block, figure in zip("ABCD", formula, strict=True):
+        allotment = of(found, block, "noise_figure")
+        assert allotment.high == pytest.approx(float(figure), abs=0.0101)
+        assert allotment.high <= float(figure) + 1e-9
+        assert allotment.is_shared and math.isinf(allotment.low)
+
+
+@pytest.mark.parametrize("law", ["coherent", "non-coherent"])
+def test_equal_shares_of_distortion_are_those_of_the_formula(law: str) -> None:
+    # rf-budget.md section 8: target + G_b + 10 log n (coherent), + 5 log n (power sum).
+    chain = exact_chain(parameter="iip3", intermodulation=law)
+    found = shared(chain, limit=at_least(-10, "dBm"))
+    formula = equal_share_iip3(-10.0, list(GAINS), "coherent" if law == "coherent" else "noncoherent")
+    for block, figure in zip("ABCD", formula, strict=True):
+        allotment = of(found, block, "iip3")
+        assert float(figure) - 1e-9 <= allotment.low <= float(figure) + 0.0101
+
+
+def test_proportional_shares_move_every_intercept_alike() -> None:
+    found = shared(exact_chain(parameter="iip3"), way="proportional", limit=at_least(-12, "dBm"))
+    formula = proportional_iip3(-12.0, list(GAINS), [-2.0, 30.0, 6.0, 12.0])
+    for block, figure in zip("ABCD", formula, strict=True):
+        assert of(found, block, "iip3").low == pytest.approx(float(figure), abs=0.0101)
+
+
+def test_passive_positions_take_their_share_first_and_the_system_closes() -> None:
+    chain = a_chain(
+        {"block": "LNA", "gain": 18.0, "noise_figure": 1.2, "more": {"gain": {"tolerance": WITHIN}}},
+        {
+            "block": "FIL",
+            "insertion_loss": 2.5,
+            "passive": True,
+            "more": {"insertion_loss": {"tolerance": WITHIN}},
+        },
+        {"block": "MIX", "gain": -7.0, "noise_figure": 7.0, "more": {"gain": {"tolerance": WITHIN}}},
+        {"block": "IF", "gain": 20.0, "noise_figure": 4.0, "more": {"gain": {"tolerance": WITHIN}}},
+    )
+    found = shared(chain, limit=at_most(3.0))
+    assert of(found, "FIL", "insertion_loss").high == 3.0
+    assert not of(found, "FIL", "insertion_loss").is_shared
+    # By hand: gains 17.5, -3, -7.5 at their worst; three active stages share F_t - 1 - (F_fil - 1)/G_lna.
+    g_lna, loss = 10**1.75, 10**0.3
+    left = (10**0.3 - 1 - (loss - 1) / g_lna) / 3
+    before = {"LNA": 1.0, "MIX": g_lna / loss, "IF": g_lna / loss * 10**-0.75}
+    for block, gain in before.items():
+        assert of(found, block, "noise_figure").high == pytest.approx(
+            10 * math.log10(1 + left * gain), abs=0.0101
+        )
+    assert found.closure.closes is True
+    assert 0 <= found.closure.limits[0].smallest < 0.02
+
+
+def test_exact_gains_that_hurt_on_both_sides_leave_closure_unshown() -> None:
+    requirements = [
+        a_requirement(
+            "R-NF", block="SYS", quantity=a_quantity("noise_figure"), limit=at_most(3), conditions=None
+        ),
+        a_requirement(
+            "R-IP", block="SYS", quantity=a_quantity("iip3"), limit=at_least(-12, "dBm"), conditions=None
+        ),
+    ]
+    chain = exact_chain(requirements=("R-NF", "R-IP"))
+    found = apportion(chain, project_of(chain, requirements=requirements), DICTIONARY)
+    assert found.closure.closes is None
+    assert any("A gain has neither a limit nor a tolerance" in one for one in found.closure.missing)
+    assert of(found, "A", "noise_figure").is_shared and of(found, "A", "iip3").is_shared
+
+
+def test_reserve_leaves_less_to_share() -> None:
+    reserve = {"parameter": "noise_figure", "amount": 0.5, "unit": "dB", "holder": "Systems"}
+    found = shared(exact_chain(reserves=(reserve,)), limit=at_most(3.0))
+    formula = equal_share_noise_figures(2.5, list(GAINS))
+    assert of(found, "A", "noise_figure").high == pytest.approx(float(formula[0]), abs=0.0101)
+
+
+def test_fixed_blocks_keep_their_figure() -> None:
+    found = shared(exact_chain(), fixed=("C",), limit=at_most(3.0))
+    formula = equal_share_noise_figures(3.0, list(GAINS), [None, None, 7.0, None])
+    assert of(found, "C", "noise_figure").high == pytest.approx(7.0)
+    assert of(found, "A", "noise_figure").high == pytest.approx(float(formula[0]), abs=0.0101)
+
+
+def test_what_is_taken_first_may_leave_nothing() -> None:
+    chain = a_chain(
+        {"block": "FIL", "insertion_loss": 2.5, "passive": True},
+        {"block": "LNA", "gain": 18.0, "noise_figure": 1.0},
+    )
+    with pytest.raises(InfeasibleError, match=r"infeasible, and short by 0\.5 dB"):
+        shared(chain, limit=at_most(2.0))
+
+
+def test_nothing_to_share_over_is_said() -> None:
+    chain = a_chain({"block": "FIL", "insertion_loss": 2.5, "passive": True})
+    with pytest.raises(CalculationError, match="nothing is left to share R-1"):
+        shared(chain, limit=at_most(3.0))
+
+
+def test_amounts_share_their_limit_and_gains_the_margin() -> None:
+    watts = a_sum("dc_power", ("A", "dc_power", 1.0), ("B", "dc_power", 0.5), unit="W")
+    equal, scaled = (shared(watts, way=way, limit=at_most(3.0, "W")) for way in ("equal", "proportional"))
+    assert [of(equal, block, "dc_power").high for block in "AB"] == [1.5, 1.5]
+    assert [of(scaled, block, "dc_power").high for block in "AB"] == [2.0, 1.0]
+    gains = a_chain({"block": "A", "gain": 20.0}, {"block": "B", "gain": -7.0}, parameter="gain")
+    found = shared(gains, limit=between(12, 15))
+    assert (of(found, "A", "gain").low, of(found, "A", "gain").high) == (19.5, 21.0)
+    assert (of(found, "B", "gain").low, of(found, "B", "gain").high) == (-7.5, -6.0)
+    assert found.closure.closes is True
+
+
+def a_sum(parameter: str, *lines: tuple[str, str, float], unit: str = "dB", law: str = "sum") -> Budget:
+    """Return a sum of one line a block."""
+    return Budget(
+        id="B-1",
+        requirements=("R-1",),
+        quantity=a_quantity(parameter),
+        law=law,
+        lines=tuple(
+            {"position": order, "block": block, "parameter": name, "value": value, "unit": unit}
+            for order, (block, name, value) in enumerate(lines, 1)
+        ),
+    )
+
+
+def test_error_vector_and_noise_powers_share_as_they_add() -> None:
+    vector = a_sum("evm", ("A", "evm", 3.0), ("B", "evm", 1.0), unit="%", law="root sum of squares")
+    assert of(shared(vector, limit=at_most(5, "%")), "A", "evm").high == pytest.approx(
+        5 / math.sqrt(2), abs=0.001
+    )
+    scaled = shared(vector, way="proportional", limit=at_most(5, "%"))
+    assert of(scaled, "A", "evm").high == pytest.approx(3 * 5 / math.sqrt(10), abs=0.002)
+    levels = a_sum(
+        "noise_density",
+        ("A", "noise_density", -150.0),
+        ("B", "noise_density", -160.0),
+        unit="dBm/Hz",
+        law="power sum",
+    )
+    found = shared(levels, limit=at_most(-140, "dBm/Hz"))
+    assert of(found, "B", "noise_density").high == pytest.approx(-143.01, abs=0.011)
+
+
+@settings(max_examples=25, deadline=None)
+@given(
+    gains=st.lists(st.floats(-8, 20), min_size=2, max_size=5),
+    noise=st.lists(st.floats(0.5, 8), min_size=5, max_size=5),
+    limit=st.floats(1, 12),
+    way=st.sampled_from(["equal", "proportional"]),
+)
+def test_shares_put_back_in_fill_the_limit(
+    gains: list[float], noise: list[float], limit: float, way: str
+) -> None:
+    stages = [{"gain": gain, "noise_figure": nf} for gain, nf in zip(gains, noise, strict=False)]
+    chain = a_chain(*stages)
+    bar = at_most(round(limit, 3))
+    found = shared(chain, way=way, limit=bar)
+    values = {
+        (order, "noise_figure"): of(found, f"S{order}", "noise_figure").high
+        for order in range(1, len(gains) + 1)
+    }
+    result = evaluate_budget(chain, project_of(chain, limit=bar), DICTIONARY, values=values)
+    margin = result.served[0].smallest_margin
+    assert -1e-9 <= margin < 0.05
+    assert np.isfinite(margin)
