@@ -25,6 +25,14 @@ def check_readable(budget: Budget, dictionary: Dictionary, values: Overrides | N
         )
     for line in budget.lines:
         _check_document(line, where, dictionary)
+    groups = {code_key(line.correlation_group) for line in budget.lines if line.correlation_group}
+    for name in (name for one in budget.correlations for name in (one.first, one.second)):
+        if code_key(name) not in groups:
+            raise DocumentError(
+                f"no line is in the correlation group {name}",
+                where=where,
+                hint="give the lines that move together that group, or take the correlation out",
+            )
     known = {line_key(line) for line in budget.lines}
     strange: list[LineKey] = [key for key in values or {} if key not in known]
     if strange:

@@ -36,7 +36,7 @@ def read_workbook(path: str | Path, snapshot: Snapshot, dictionary: Dictionary) 
     or in which no sheet is known; all else is a finding, and a row that is refused gives no document.
     """
     file = open_grids(path)
-    intake = Intake(snapshot, dictionary)
+    intake = Intake(snapshot, dictionary, folder=Path(path).parent)
     tables = _tables(_recognised(file, intake.findings), file.fingerprint.sha256, intake.findings)
     for sheet, rows in tables:
         sheet.identify_rows(rows, intake)
@@ -74,7 +74,9 @@ def _recognised(file: GridFile, findings: list[Finding]) -> list[Found]:
     if not named:
         raise _nothing_known(file)
     findings.extend(_not_read(grid) for grid in others)
-    return sorted(named, key=lambda found: _READING_ORDER.index(found[0].layout.noun))
+    return sorted(
+        named, key=lambda found: (_READING_ORDER.index(found[0].layout.noun), SHEETS.index(found[0]))
+    )
 
 
 def _by_headers(grids: Sequence[Grid], findings: list[Finding]) -> tuple[list[Found], list[Grid]]:

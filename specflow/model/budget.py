@@ -143,16 +143,6 @@ class Budget(Document):
             seen.add(key)
         return self
 
-    @model_validator(mode="after")
-    def _correlations_name_groups(self) -> Self:
-        groups = {code_key(line.correlation_group) for line in self.lines if line.correlation_group}
-        for one in self.correlations:
-            for name in (one.first, one.second):
-                if code_key(name) not in groups:
-                    raise ValueError(f"{self.id}: no line is in the correlation group {name}")
-        return self
-
-
 class Allocation(Document):
     """The link from a parent requirement to the block requirement that carries its share.
 

@@ -5,7 +5,7 @@ What may live here, in the order of a run:
 - ``header`` and ``table``: which row and columns count; ``row`` and ``cells``: a cell, typed or refused
 - ``intake``: what was read so far, references, duplicates; ``spelling``: the nearest known words
 - one module a noun; ``limit_cells``, ``limit_names``, ``limit_doubts``, ``decision_rules``, ``requirement_columns``:
-  parts of the requirement sheet
+  parts of the requirement sheet; ``budget_lines``, ``line_values``, ``line_tolerances``: the second sheet of budgets
 - ``cycles``, ``leftovers``, ``plans``: what is checked and completed once all sheets are read
 - ``sheet``: what a sheet kind is; ``findings``: what may be reported
 
@@ -17,6 +17,8 @@ from specflow.importers.sheets import (
     allocations,
     blocks,
     board_decisions,
+    budget_lines,
+    budgets,
     change_records,
     condition_maps,
     conditions_sets,
@@ -42,6 +44,8 @@ SHEETS: tuple[Sheet, ...] = (
     uncertainty.SHEET,
     condition_maps.SHEET,
     parameters.SHEET,
+    budgets.SHEET,
+    budget_lines.SHEET,
     allocations.SHEET,
     change_records.SHEET,
     nonconformances.SHEET,

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, field
+from pathlib import Path
 from typing import TypeVar, cast
 
 from specflow.changes import due_revision
@@ -33,7 +34,7 @@ class Intake:
     ``dictionary`` grows by the workbook's own parameters. ``documents`` maps noun → code key → document, ``codes``
     noun → code key → the code as written, its row and its column. ``shorthand`` holds, by requirement key, the
     activities that the requirement's own row plans (none where its column Method is empty). ``removals`` are stored
-    documents that the workbook no longer wants.
+    documents that the workbook no longer wants. ``folder`` is where files named in cells are looked for.
     """
 
     snapshot: Snapshot
@@ -44,6 +45,7 @@ class Intake:
     codes: dict[str, dict[str, tuple[str, SheetRow, str]]] = field(default_factory=dict)
     shorthand: dict[str, list[Activity]] = field(default_factory=dict)
     removals: list[Document] = field(default_factory=list)
+    folder: Path | None = None
     _nearest: dict[tuple[str, str], str] = field(default_factory=dict)
 
     def register(

@@ -37,6 +37,7 @@ class Sheet:
     ``identify`` gives the code of a row, "" when it has none; rows with the same code are one document where
     ``grouped``. ``read`` turns the rows into documents and adds them to the intake. ``may_be_another``: people use its
     name for other sheets too (a cover), so one without its headers is left aside and not refused.
+    ``is_further``: another sheet of its noun is the one that is called like it.
     """
 
     layout: SheetLayout
@@ -45,10 +46,12 @@ class Sheet:
     identify: Callable[[SheetRow, Intake], str] = own_id
     grouped: bool = False
     may_be_another: bool = False
+    is_further: bool = False
 
     def names(self) -> tuple[str, ...]:
         """What a worksheet of this kind may be called."""
-        return (self.layout.title, *self.layout.aliases, self.layout.noun)
+        noun = () if self.is_further else (self.layout.noun,)
+        return (self.layout.title, *self.layout.aliases, *noun)
 
     def identify_rows(self, rows: Sequence[SheetRow], intake: Intake) -> None:
         """Give every row its code and register it. In grouped sheets an empty id continues the row above."""

@@ -1,0 +1,379 @@
+"""The sheet of budget lines: one row a figure of a position; what belongs to the position is said once."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, field
+from typing import get_args
+
+from specflow.importers.sheets.intake import Intake
+from specflow.importers.sheets.line_tolerances import line_tolerance, tolerance_words
+from specflow.importers.sheets.line_values import CellContext, read_line_value, value_words
+from specflow.importers.sheets.parameters import known_parameter
+from specflow.importers.sheets.row import SheetRow
+from specflow.importers.sheets.sheet import MARK_COLUMN, Sheet
+from specflow.model.base import code_key
+from specflow.model.block import Block, Maturity
+from specflow.model.budget import Budget, BudgetLine, BudgetPosition
+from specflow.model.budget_line import Distribution
+from specflow.model.conditions import ConditionMap, ConditionsSet
+from specflow.model.sheet import EXAMPLE, SheetColumn, SheetLayout
+
+_SHARED: tuple[str, ...] = get_args(BudgetLine.model_fields["shared"].annotation)
+_SIDEBANDS = ("SSB", "DSB")
+
+LAYOUT = SheetLayout(
+    noun="budget",
+    title="Budget lines",
+    aliases=("Budget line", "Lines of budgets"),
+    intro=(
+        "What each block contributes: one row a figure. Positions count from the input. Every value is read at the "
+        "block's own conditions; outside a table there is no value."
+    ),
+    columns=(
+        MARK_COLUMN,
+        SheetColumn(
+            key="budget",
+            title="Budget",
+            aliases=("Budget ID",),
+            field="id",
+            required=True,
+            guidance="ID of the budget. Empty below a row: the same.",
+            example="B-TX",
+        ),
+        SheetColumn(
+            key="position",
+            title="Position",
+            aliases=("Pos", "No.", "Order"),
+            field="positions",
+            required=True,
+            guidance="Its place from the input: 1, 2 ... Empty below a row: the same.",
+            example="1",
+            width=10,
+        ),
+        SheetColumn(
+            key="block",
+            title="Block",
+            aliases=("Block ID",),
+            field="positions",
+            required=True,
+            guidance="ID of the block. Empty below a row: the same.",
+            example="TX-PA",
+        ),
+        SheetColumn(
+            key="name",
+            title="Position name",
+            field="positions",
+            guidance="Where one block stands at several places. Once a position.",
+        ),
+        SheetColumn(
+            key="count",
+            title="N in parallel",
+            aliases=("Count", "N", "Elements"),
+            field="positions",
+            guidance="Identical elements in parallel. Empty: 1. Once a position.",
+            width=12,
+        ),
+        SheetColumn(
+            key="passive",
+            title="Passive",
+            field="positions",
+            guidance="yes: its noise is that of its loss at its physical temperature. Once a position.",
+            choices=("yes", "no"),
+            width=10,
+        ),
+        SheetColumn(
+            key="condition_map",
+            title="Condition map",
+            field="positions",
+            guidance="Empty: the block's own. Once a position.",
+        ),
+        SheetColumn(
+            key="parameter",
+            title="Parameter",
+            aliases=("Quantity", "Figure"),
+            field="lines",
+            required=True,
+            guidance="gain, insertion_loss, noise_figure, iip3, oip3, op1db, antenna_gain; intercepts name their port.",
+            example="gain",
+        ),
+        SheetColumn(
+            key="value",
+            title="Value",
+            field="lines",
+            required=True,
+            guidance=(
+                "24 dB · 24 dB - 0.02 dB/K of temperature_baseplate from 23 °C · table frequency: 17.7 GHz 23.5; "
+                "20.2 GHz 24.5 dB linear · trace T-1: Gain along frequency · touchstone filter.s2p S21"
+            ),
+            example="24 dB - 0.02 dB/K of temperature_baseplate from 23 °C",
+            width=46,
+        ),
+        SheetColumn(
+            key="unit",
+            title="Unit",
+            aliases=("Units",),
+            field="lines",
+            guidance="If not with the value.",
+            width=9,
+        ),
+        SheetColumn(
+            key="tolerance",
+            title="Tolerance",
+            aliases=("±",),
+            field="lines",
+            guidance="± 0.5 dB, or +0.3/-0.1 dB.",
+            example="± 0.5 dB",
+            width=14,
+        ),
+        SheetColumn(
+            key="tolerance_meaning",
+            title="Tolerance means",
+            aliases=("Meaning",),
+            field="lines",
+            guidance="limits, or 2 sigma (k=2). A root sum of squares refuses lines that do not say.",
+            example="limits",
+            width=14,
+        ),
+        SheetColumn(
+            key="distribution",
+            title="Distribution",
+            field="lines",
+            guidance="Bounds are no distribution: Monte Carlo needs one. Truncated normal: limits, k=3.",
+            choices=tuple(Distribution),
+            example="uniform",
+            width=16,
+        ),
+        SheetColumn(
+            key="correlation_group",
+            title="Correlation group",
+            aliases=("Moves with",),
+            field="lines",
+            guidance="Lines of one group move together.",
+        ),
+        SheetColumn(
+            key="shared",
+            title="Elements move",
+            field="lines",
+            guidance="Of N in parallel: common (empty), or per element: independent, they average.",
+            choices=_SHARED,
+            width=14,
+        ),
+        SheetColumn(
+            key="growth",
+            title="Growth allowance",
+            field="lines",
+            guidance="Taken off the figure, in its tolerance unit. Empty: none.",
+            width=12,
+        ),
+        SheetColumn(
+            key="sideband",
+            title="Sideband",
+            field="lines",
+            guidance="Of a mixer's noise figure: SSB or DSB.",
+            choices=_SIDEBANDS,
+            width=10,
+        ),
+        SheetColumn(
+            key="maturity",
+            title="Maturity",
+            field="lines",
+            guidance="Empty: estimated.",
+            choices=tuple(Maturity),
+            example="datasheet typical",
+            width=18,
+        ),
+        SheetColumn(
+            key="source",
+            title="Source",
+            aliases=("Reference",),
+            field="lines",
+            example="Data sheet (invented)",
+            width=24,
+        ),
+    ),
+    more_examples=(
+        {
+            "mark": EXAMPLE,
+            "budget": "B-TX",
+            "position": "2",
+            "block": "TX",
+            "passive": "yes",
+            "parameter": "insertion_loss",
+            "value": "table frequency: 27.5 GHz 1.1; 30 GHz 1.3 dB linear",
+            "tolerance": "+0.3/-0.1 dB",
+            "tolerance_meaning": "limits",
+            "distribution": "triangular",
+        },
+        {
+            "mark": EXAMPLE,
+            "budget": "B-TX",
+            "position": "3",
+            "block": "UT",
+            "parameter": "antenna_gain",
+            "value": "28.5 dBi",
+            "tolerance": "± 0.4 dB",
+            "tolerance_meaning": "2 sigma",
+            "maturity": "simulated",
+        },
+    ),
+)
+
+
+@dataclass(slots=True)
+class _Place:
+    """A position as its rows describe it."""
+
+    row: SheetRow
+    block: str
+    said: dict[str, object] = field(default_factory=dict)
+
+
+@dataclass(slots=True)
+class _Lines:
+    """What the rows of one budget gave so far."""
+
+    budget: str
+    rows: list[SheetRow] = field(default_factory=list)
+    places: dict[int, _Place] = field(default_factory=dict)
+    lines: list[BudgetLine] = field(default_factory=list)
+    words: list[str] = field(default_factory=list)
+
+
+def read(rows: Sequence[SheetRow], intake: Intake) -> None:
+    """Give every budget named on the sheet the positions and lines of its rows, in place of those it had."""
+    groups: dict[str, _Lines] = {}
+    budget, order, block = "", "", ""
+    for row in rows:
+        named = row.text("budget") or budget
+        if code_key(named) != code_key(budget):
+            order, block = "", ""
+        position = row.text("position") or order
+        own = row.text("block") or (block if position == order else "")
+        budget, order, block = named, position, own
+        if not named:
+            row.needed("budget")
+            continue
+        group = groups.setdefault(code_key(named), _Lines(intake.link(row, "budget", Budget, named)))
+        group.rows.append(row)
+        _row(row, group, position, own, intake)
+    for group in groups.values():
+        _finish(group, intake)
+
+
+def _row(row: SheetRow, group: _Lines, position: str, block: str, intake: Intake) -> None:
+    row.subject = f"{group.budget} position {position}"
+    order = _order(row, position)
+    if not block:
+        row.needed("block")
+        return
+    code = intake.link(row, "block", Block, block)
+    if order is None:
+        return
+    place = group.places.setdefault(order, _Place(row, code))
+    if code_key(place.block) != code_key(code):
+        row.fault(
+            "block", f"position {order} is {place.block} above", "give the other block a position of its own"
+        )
+    _say(row, place, intake)
+    line = _line(row, order, code, group, intake)
+    if line is not None:
+        group.lines.append(line)
+
+
+def _order(row: SheetRow, text: str) -> int | None:
+    if not text:
+        row.needed("position")
+        return None
+    if not text.isdecimal():
+        row.fault("position", f"{text!r} is no position", "count from the input: 1, 2 ...")
+        return None
+    return int(text)
+
+
+def _say(row: SheetRow, place: _Place, intake: Intake) -> None:
+    """Note what a row says of its position; another statement on a later row is refused."""
+    said: dict[str, object] = {}
+    if row.text("name"):
+        said["name"] = row.text("name")
+    if row.text("count"):
+        said["count"] = row.whole("count", 1, least=1)
+    if row.text("passive"):
+        said["passive"] = row.yes("passive", False)
+    if row.text("condition_map"):
+        said["condition_map"] = intake.reference(row, "condition_map", ConditionMap)
+    for name, value in said.items():
+        if place.said.setdefault(name, value) != value:
+            row.fault(name, f"position {row.subject} says {place.said[name]} above", "say it once a position")
+
+
+def _line(row: SheetRow, order: int, block: str, group: _Lines, intake: Intake) -> BudgetLine | None:
+    named, text = known_parameter(row, "parameter", intake), row.needed("value")
+    unit = row.text("unit") or row.units.get("value", "")
+    context = _context(group.budget, block, unit, intake)
+    found = row.attempt("value", lambda: read_line_value(text, context)) if text else None
+    if found is None or named is None:
+        return None
+    notes = list(found.notes)
+    tolerance = line_tolerance(row, found.unit, notes)
+    growth = row.number_or("growth", 0.0)
+    line = row.build(
+        BudgetLine,
+        position=order,
+        block=block,
+        parameter=named.parameter.key,
+        value=found.value,
+        unit=found.unit,
+        drifts=found.drifts,
+        tolerance=tolerance,
+        correlation_group=row.text("correlation_group"),
+        shared=row.one_of("shared", _SHARED, "common"),
+        growth=growth,
+        sideband=row.one_of("sideband", _SIDEBANDS, ""),
+        maturity=row.choice("maturity", Maturity, Maturity.ESTIMATED),
+        source=row.prose("source"),
+    )
+    if line is not None:
+        words = f"{line.block} {line.parameter} {value_words(line.value, line.unit, line.drifts)}"
+        words += f" {tolerance_words(tolerance, line.unit)}" if tolerance is not None else ""
+        group.words.append("; ".join((words, *notes)))
+    return line
+
+
+def _context(budget: str, block: str, unit: str, intake: Intake) -> CellContext:
+    """The conditions that the block meets: what its map makes, then what the conditions set of the budget states."""
+    maps = [
+        one
+        for one in intake.all(ConditionMap)
+        if one.block is not None and code_key(one.block) == code_key(block)
+    ]
+    names = [entry.target for one in maps for entry in one.entries]
+    found = intake.find(Budget, budget)
+    conditions = intake.find(ConditionsSet, found.conditions if found is not None else None)
+    stated = [one.name for one in conditions.dimensions] if conditions is not None else []
+
+    def of(kind: str) -> tuple[str, ...]:
+        own = tuple(name for name in names if kind in name)
+        return own or tuple(name for name in stated if kind in name)
+
+    return CellContext(unit, of("temperature"), of("frequency"), intake.folder)
+
+
+def _finish(group: _Lines, intake: Intake) -> None:
+    budget = intake.find(Budget, group.budget)
+    if budget is None or not all(row.sound for row in group.rows):
+        return
+    positions = tuple(
+        BudgetPosition.model_validate({"order": order, "block": place.block, **place.said})
+        for order, place in sorted(group.places.items())
+    )
+    row = group.rows[0]
+    fields = {name: getattr(budget, name) for name in Budget.model_fields}
+    document = row.build(Budget, **fields | {"positions": positions, "lines": tuple(group.lines)})
+    if document is not None:
+        intake.add(document, set(Budget.model_fields))
+        count = f"{len(positions)} position{'s' if len(positions) != 1 else ''}, {len(group.lines)} lines"
+        intake.echo(document.id, "; ".join((count, *group.words)))
+
+
+SHEET = Sheet(LAYOUT, Budget, read, lambda row, intake: "", is_further=True)
