@@ -137,6 +137,7 @@ MAPS = [
     ("CM-DNC", "DNC", "if_frequency = frequency - 15.2 GHz"),
     ("CM-DNC", "", "temperature_baseplate = temperature_ambient + 18 K"),
     ("CM-LNA", "RX-LNA", "temperature_baseplate = temperature_ambient + 18 K"),
+    ("CM-PLATE", "", "temperature_baseplate = temperature_ambient + 18 K"),
 ]
 
 DECLARED = [

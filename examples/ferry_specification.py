@@ -5,6 +5,14 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import Any
 
+from ferry_budgets import (
+    ALLOCATION_HEADERS,
+    ALLOCATIONS,
+    BUDGET_HEADERS,
+    BUDGET_LINES,
+    BUDGETS,
+    LINE_HEADERS,
+)
 from ferry_product import ACTIVITIES, BLOCKS, CONDITIONS, DECLARED, ITEMS, MAPS, UNCERTAINTY, WAIVERS
 from ferry_requirements import REQUIREMENTS
 from workbooks import Sheet, table
@@ -49,6 +57,9 @@ def specification_sheets() -> list[Sheet]:
             ),
             [(*one, "k=2") for one in UNCERTAINTY],
         ),
+        _rows("Budgets", BUDGET_HEADERS, BUDGETS),
+        _rows("Budget lines", LINE_HEADERS, BUDGET_LINES),
+        _rows("Allocations", ALLOCATION_HEADERS, ALLOCATIONS),
         _sheet("Waivers", "Accepted shortfalls", WAIVERS),
     ]
 
@@ -93,5 +104,8 @@ def _sheet(name: str, title: str, records: Sequence[Row], headers: Sequence[str]
     found = dict.fromkeys(header for record in records for header in record)
     order = headers or sorted(found, key=lambda one: _ORDER.index(one) if one in _ORDER else len(_ORDER))
     rows = [[f"{title}. {INVENTED}"], *table(list(order), records)]
-    widths = {place: 44 if header == "Limit" else 20 for place, header in enumerate(order)}
+    widths = {
+        place: 44 if header in ("Limit", "Value", "Title", "Note") else 20
+        for place, header in enumerate(order)
+    }
     return Sheet(name, rows, widths=widths, bold=frozenset({1, 2}))

@@ -131,11 +131,11 @@ def _cumulative_row(
     position = outcome.positions[row]
     cells = [ReportCell(text=str(position.order), number=position.order), text(position_words(outcome, row))]
     cells.extend(_own(outcome, row, place, name) for name in figures)
-    cells.extend(number(float(one.cumulative[row, place]), one.unit) for one in outcome.quantities)
+    cells.extend(chain_figure(float(one.cumulative[row, place]), one.unit) for one in outcome.quantities)
     if has_level and outcome.levels is not None:
-        cells.append(number(float(outcome.levels[row + 1, place]), "dBm"))
+        cells.append(chain_figure(float(outcome.levels[row + 1, place]), "dBm"))
     if outcome.noise is not None:
-        cells.append(number(float(outcome.noise[row + 1, place]), "dBm"))
+        cells.append(chain_figure(float(outcome.noise[row + 1, place]), "dBm"))
     return ReportRow(id=f"{outcome.budget.id}/{position.order}", cells=tuple(cells))
 
 
@@ -155,7 +155,14 @@ def _own(outcome: BudgetOutcome, row: int, place: int, figure: str) -> ReportCel
         return ReportCell(text=DASH, tone=CellTone.QUIET)
     value = float(outcome.figures[figure][row, place])
     unit = FIGURE_TITLES[figure][1] or outcome.quantities[0].unit
-    return number(value, unit)
+    return chain_figure(value, unit)
+
+
+def chain_figure(value: float, unit: str) -> ReportCell:
+    """Return a figure of the chain as a cell, always with two decimals, so that columns are read at a glance."""
+    if not math.isfinite(value):
+        return number(value, unit)
+    return ReportCell(text=f"{rounded(value, 2)} {unit}".strip(), number=value)
 
 
 # Margins

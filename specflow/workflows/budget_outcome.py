@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 from specflow.budgets import (
     BudgetResult,
     MonteCarloResult,
+    Probability,
     ReadLine,
     Rss,
     Served,
@@ -342,6 +343,13 @@ def _chance_ways(drawn: MonteCarloResult) -> list[WayOutcome]:
     return [_chance_way(output.parameter, one, drawn) for output in drawn.outputs for one in output.served]
 
 
+def _short(found: Probability) -> str:
+    if found.trials == 0:
+        return ""
+    low, high = (f"{100 * end:.4g}" for end in (found.low, found.high))
+    return f"{100 * found.value:.4g} % ({low} to {high} %, sampling only)"
+
+
 def _chance_way(parameter: str, one: ServedChance, drawn: MonteCarloResult) -> WayOutcome:
     place = int(np.nanargmin(one.probability)) if not np.isnan(one.probability).all() else -1
     assumes = (
@@ -354,6 +362,6 @@ def _chance_way(parameter: str, one: ServedChance, drawn: MonteCarloResult) -> W
         margin=one.quantiles[LOW_PART],
         margin_unit=one.margin_unit,
         worst=place,
-        probability=one.joint.words,
+        probability=_short(one.joint),
         assumes=assumes,
     )
