@@ -1,8 +1,8 @@
 """One activity: how many of its points are proved, by whom, and what governs it.
 
 Any one item: the item with credit and the most points is shown. Each of named items, or a number of them: n is points
-times items, k is counted item by item. A fail of another item that is not outranked at its point still makes the
-activity fail: a verdict may only get worse.
+times items, k is counted item by item; readings that name no item are nobody's there. A fail of another item that is
+not outranked at its point still makes the activity fail: a verdict may only get worse.
 """
 
 from __future__ import annotations
@@ -103,11 +103,11 @@ def _provers(
         return list(items), 0
     wanted = {code_key(name) for name in named}
     able = [one for one in items if not wanted or code_key(one.item) in wanted]
-    if provers.rule == "each of":
-        return sorted(able, key=_most_proved, reverse=True), max(len(wanted) - len(able), 0)
     if provers.rule == "any one":
         return [max(able or items, key=_most_proved)], 0
-    ranked = sorted(able or items, key=_most_proved, reverse=True)
+    ranked = sorted((one for one in able if one.item), key=_most_proved, reverse=True)
+    if provers.rule == "each of":
+        return ranked, max(len(wanted) - len(ranked), 0)
     return ranked[: provers.number], max(provers.number - len(ranked), 0)
 
 

@@ -14,11 +14,13 @@ from specflow.conditions.points import Points
 from specflow.limits import LimitContext, evaluate_limit
 from specflow.limits.conversion import difference_unit
 from specflow.limits.tree import tree_names
+from specflow.model.base import code_key
 from specflow.model.limit import Limit
 from specflow.model.requirement import Activity, Requirement
 from specflow.model.verdict import Conflict, Mismatch, RecordRef, Standing, Verdict
 from specflow.verification.activity import ActivityOutcome, summarise
 from specflow.verification.alternatives import Member, members_of, put_together
+from specflow.verification.changed import remarks_on
 from specflow.verification.conflicts import conflicts
 from specflow.verification.credit import credit
 from specflow.verification.grid import Bench
@@ -27,7 +29,7 @@ from specflow.verification.limit_inputs import is_plain, limit_columns
 from specflow.verification.points import ItemPoints, item_points
 from specflow.verification.readings import Readings, Served, readings_of, serving
 from specflow.verification.records import Records
-from specflow.verification.standing import STANDINGS
+from specflow.verification.standing import STALE, STANDINGS
 from specflow.verification.unmatched import serving_nothing
 from specflow.verification.workspace import Workspace
 
@@ -149,6 +151,7 @@ def lay_ground(requirement: Requirement, member: Member, points: Points, workspa
     conditions = workspace.conditions_of(requirement, records)
     matched = workspace.matching(points, conditions)
     served = readings_of(records, *serving(records, matched.record, matched.point))
+    nothing, holes = _nothing_required(member.limit, points, workspace)
     judging = Judging(requirement, member.want, member.limit, points, records, conditions, workspace)
     return Ground(
         points,
@@ -157,8 +160,21 @@ def lay_ground(requirement: Requirement, member: Member, points: Points, workspa
         served,
         judging,
         judging.one_by_one(served) if judging.each_alone else None,
-        *_nothing_required(member.limit, points, workspace),
+        nothing,
+        (*holes, *_changed_below(requirement, records, workspace)),
     )
+
+
+def _changed_below(requirement: Requirement, records: Records, workspace: Workspace) -> tuple[str, ...]:
+    """Say that parts of the block have changed since its evidence was taken, where that does not make it stale."""
+    changes = workspace.changes_below.get(code_key(requirement.block), ())
+    if not changes:
+        return ()
+    codes = enumerate(records.sources)
+    fresh = [
+        source.table for code, source in codes if (records.standing[records.source == code] < STALE).any()
+    ]
+    return remarks_on(fresh, changes)
 
 
 def _nothing_required(

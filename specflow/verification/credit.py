@@ -7,6 +7,11 @@ shows progress when it passes; when it fails it stays an open fail unless someth
 
 Stages: evidence proves activities of its own stage (the default activity, which nobody planned, takes any). A fail at
 a later stage keeps its weight; one at an earlier stage counts like one on less representative hardware.
+
+Items: a reading that names none, or one that nobody registered, is taken as of engineering hardware, the default of an
+item. Where any one item will do that gives credit if the activity is content with engineering hardware (and a rule
+reports it); where several must prove, or named ones, a reading that names no item proves nothing: it may be of the same
+specimen as another.
 """
 
 from __future__ import annotations
@@ -81,12 +86,12 @@ def credit(
     """Return rank and credit of every pair for one activity; ``record`` (p,) are the readings of the pairs."""
     kinds: list[tuple[int, bool, bool]] = []
     why: dict[str, None] = {}
-    named = _named(provers, workspace)
+    named, several = _named(provers, workspace), provers.rule != "any one"
     for source in records.sources:
         reason = _no_credit(activity, source, workspace)
         outdated = _outdated(activity, source.table)
         for item in records.items:
-            own = reason or _item_reason(activity, source, item, named, workspace)
+            own = reason or _item_reason(activity, source, item, named, several, workspace)
             kinds.append((_rank(activity, source, item, workspace), not own and not outdated, bool(outdated)))
             why.update(dict.fromkeys(text for text in (own, outdated) if text))
     return _spread(records, record, kinds, tuple(why))
@@ -143,16 +148,19 @@ def _articled(method: Method) -> str:
 
 
 def _item_reason(
-    activity: Activity, source: Source, item: str, named: frozenset[str], workspace: Workspace
+    activity: Activity,
+    source: Source,
+    item: str,
+    named: frozenset[str],
+    several: bool,
+    workspace: Workspace,
 ) -> str:
     if is_of_design(source) and not item:
         return ""
+    if not item and (named or several):
+        return f"{source.table.id}: no item is named in the evidence"
     if named and code_key(item) not in named:
-        return (
-            f"item {item} is not one of those named to prove it"
-            if item
-            else "no item is named in the evidence"
-        )
+        return f"item {item} is not one of those named to prove it"
     if not _is_representative(activity, source, item, workspace):
         kind = workspace.hardware_type(item).value
         return f"item {item} is {kind} hardware, credit needs {activity.credit_from.value} or better"

@@ -11,6 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.errors import UnitError
+from specflow.model.base import code_key
 from specflow.model.columns import Columns
 from specflow.model.evidence import EvidenceTable, ValueArrays, ValueColumn
 from specflow.model.verdict import Mismatch, RecordRef
@@ -223,12 +224,12 @@ def _exact(parts: Sequence[Held], arrays: Sequence[ValueArrays]) -> NDArray[np.b
 def _items(parts: Sequence[Held]) -> tuple[NDArray[np.intp], tuple[str, ...]]:
     if len(parts) == 1:
         return parts[0].item_codes, parts[0].items
-    names: dict[str, int] = {}
+    names: dict[str, tuple[int, str]] = {}
     codes = []
     for part in parts:
-        places = [names.setdefault(name, len(names)) for name in part.items]
+        places = [names.setdefault(code_key(name), (len(names), name))[0] for name in part.items]
         codes.append(np.array(places, np.intp)[part.item_codes])
-    return np.concatenate(codes), tuple(names)
+    return np.concatenate(codes), tuple(name for _, name in names.values())
 
 
 def _numbered(sizes: Sequence[int]) -> Rows:

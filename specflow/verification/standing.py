@@ -10,7 +10,7 @@ was accepted.
 from __future__ import annotations
 
 from collections import defaultdict
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
 from datetime import date
 
@@ -20,10 +20,11 @@ from numpy.typing import NDArray
 from specflow.model.base import code_key
 from specflow.model.block import Item
 from specflow.model.columns import TextColumn
-from specflow.model.evidence import EvidenceTable, ItemChange, Supersession, Withdrawal
+from specflow.model.evidence import EvidenceTable, Supersession, Withdrawal
 from specflow.model.requirement import Method
 from specflow.model.snapshot import Snapshot
 from specflow.model.verdict import Standing
+from specflow.verification.changed import Touch, touched
 from specflow.verification.dates import day_of, is_after
 
 Codes = NDArray[np.int8]
@@ -68,7 +69,7 @@ class StandingRegister:
     as_of: date
     withdrawals: Mapping[str, list[Withdrawal]]
     supersessions: Mapping[str, list[Supersession]]
-    changes: Mapping[str, list[ItemChange]]
+    changes: Mapping[str, Sequence[Touch]]
     items: Mapping[str, Item] = field(default_factory=dict)
 
     @classmethod
@@ -76,17 +77,15 @@ class StandingRegister:
         """Collect the records of a snapshot; what was recorded or takes effect later than ``as_of`` does not count."""
         withdrawals: dict[str, list[Withdrawal]] = defaultdict(list)
         supersessions: dict[str, list[Supersession]] = defaultdict(list)
-        changes: dict[str, list[ItemChange]] = defaultdict(list)
         for withdrawal in snapshot.all(Withdrawal):
             if not is_after(withdrawal.at, as_of):
                 withdrawals[code_key(withdrawal.table)].append(withdrawal)
         for supersession in snapshot.all(Supersession):
             if not is_after(supersession.at, as_of):
                 supersessions[code_key(supersession.earlier)].append(supersession)
-        for change in snapshot.all(ItemChange):
-            if change.effective <= as_of:
-                changes[code_key(change.block)].append(change)
-        return cls(as_of, dict(withdrawals), dict(supersessions), dict(changes), snapshot.items_by_name)
+        return cls(
+            as_of, dict(withdrawals), dict(supersessions), touched(snapshot, as_of), snapshot.items_by_name
+        )
 
     def standing(
         self, table: EvidenceTable, parameter: str, items: TextColumn, dates: TextColumn | None
@@ -154,7 +153,8 @@ class StandingRegister:
     def _stale(
         self, table: EvidenceTable, parameter: str, items: TextColumn, dates: TextColumn | None
     ) -> Iterable[tuple[str, NDArray[np.bool_]]]:
-        for change in self.changes.get(code_key(table.block), ()):
+        for touch in self.changes.get(code_key(table.block), ()):
+            change = touch.change
             if change.parameters and code_key(parameter) not in map(code_key, change.parameters):
                 continue
             if table.method not in _TOUCHED.get(change.aspect, frozenset(Method)):
@@ -162,14 +162,19 @@ class StandingRegister:
             rows = _before_date(table, dates, change.effective.isoformat())
             dated = _dated(table, dates)
             rows = rows | ~dated if dated is not None else np.ones(table.rows, bool)
-            if change.item is not None:
-                rows = rows & self._of_item(items, change.item)
-            yield f"{change.aspect} changed on {change.effective} ({change.id}: {change.description})", rows
+            if touch.item is not None:
+                rows = rows & self._may_be_of(table, items, touch.item)
+            yield touch.words, rows
 
-    def _of_item(self, items: TextColumn, item: str) -> NDArray[np.bool_]:
-        wanted = self.items.get(code_key(item))
-        hits = [self.items.get(code_key(label)) is wanted and wanted is not None for label in items.labels]
-        return np.array([*hits, False])[items.codes]
+    def _may_be_of(self, table: EvidenceTable, items: TextColumn, item: str) -> NDArray[np.bool_]:
+        """Return which rows may be of an item: those that name it, and observations that name none."""
+        wanted = self._id(item)
+        hits = [self._id(label) == wanted for label in items.labels]
+        return np.array([*hits, table.method in _OBSERVED])[items.codes]
+
+    def _id(self, name: str) -> str:
+        found = self.items.get(code_key(name))
+        return code_key(name if found is None else found.id)
 
 
 def _mark(codes: Codes, rows: NDArray[np.bool_], code: int, reason: str, reasons: list[str]) -> None:

@@ -25,13 +25,14 @@ from specflow.model.block import Block, HardwareType, Item
 from specflow.model.columns import Columns, TextColumn
 from specflow.model.conditions import ConditionMap, ConditionsSet
 from specflow.model.declared import DeclaredValue
-from specflow.model.evidence import EvidenceColumns, EvidenceFile, FileKind
+from specflow.model.evidence import EvidenceColumns, EvidenceFile, FileKind, ItemChange
 from specflow.model.project import Policy
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Snapshot
 from specflow.model.verdict import Mismatch
 from specflow.parameters import Dictionary
 from specflow.units import Quantity, parse_unit
+from specflow.verification.changed import changes_below
 from specflow.verification.comparable import Fit, Wanted, fit
 from specflow.verification.map_choice import MapChoice
 from specflow.verification.records import Held, Records, Source, gather, no_records
@@ -78,6 +79,11 @@ class Workspace:
     def register(self) -> StandingRegister:
         """What people recorded about the standing of evidence."""
         return StandingRegister.of(self.snapshot, self.as_of)
+
+    @cached_property
+    def changes_below(self) -> Mapping[str, Sequence[ItemChange]]:
+        """What changed below a block, by its key."""
+        return changes_below(self.snapshot, self.as_of)
 
     @cached_property
     def declared(self) -> Mapping[str, Quantity]:
@@ -240,11 +246,11 @@ class Workspace:
 
 
 def _coded(names: TextColumn, identify: Callable[[str], str]) -> tuple[NDArray[np.intp], tuple[str, ...]]:
-    ids: dict[str, int] = {}
-    places = [ids.setdefault(identify(label), len(ids)) for label in names.labels]
+    """Return codes into item names; spellings that differ in case only are one item, the first is shown."""
+    ids: dict[str, tuple[int, str]] = {}
+    found = [identify(label) for label in names.labels]
+    places = [ids.setdefault(code_key(name), (len(ids), name))[0] for name in found]
+    nobody = 0
     if (names.codes < 0).any() or not places:
-        nobody = ids.setdefault("", len(ids))
-        places.append(nobody)
-    else:
-        places.append(0)
-    return np.array(places, np.intp)[names.codes], tuple(ids)
+        nobody = ids.setdefault("", (len(ids), ""))[0]
+    return np.array([*places, nobody], np.intp)[names.codes], tuple(name for _, name in ids.values())
