@@ -32,7 +32,8 @@ def test_the_first_example_row_is_made_of_the_columns_examples() -> None:
 @pytest.mark.parametrize("sheet", SHEETS, ids=lambda sheet: str(sheet.layout.title))
 def test_each_sheet_fills_fields_of_its_own_noun(sheet: Sheet) -> None:
     assert NOUN_BY_DOCUMENT[sheet.document].name == sheet.layout.noun
-    beside = {"mark", "method", "stage", "hardware"} if sheet.layout.noun == "requirement" else {"mark"}
+    others = {"requirement": {"method", "stage", "hardware"}, "project": {"value"}}
+    beside = {"mark"} | others.get(sheet.layout.noun, set())
     for column in sheet.layout.columns:
         if column.key not in beside:
             field, _, part = column.fills.partition(".")
