@@ -146,7 +146,8 @@ class Budget(Document):
 class Allocation(Document):
     """The link from a parent requirement to the block requirement that carries its share.
 
-    ``budget`` with its revision, or "manual" with a reason.
+    ``budget`` with its revision, or "manual" with a reason. ``proposed`` is the limit that the budget gave; where the
+    child carries another by hand, ``manual_reason`` says why.
     """
 
     id: Code
@@ -156,6 +157,7 @@ class Allocation(Document):
     budget: Code | None = None
     budget_revision: int | None = None
     manual_reason: str = ""
+    proposed: str = ""
     state: Literal["proposed", "agreed", "baselined"] = "proposed"
     given_by: str = ""
     taken_by: str = ""
