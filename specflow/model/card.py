@@ -7,6 +7,7 @@ from enum import StrEnum
 from specflow.model.base import Document
 from specflow.model.finding import Finding
 from specflow.model.origin import Origin
+from specflow.model.picture import Picture
 from specflow.model.report import CellTone
 
 
@@ -96,7 +97,8 @@ class TrailStep(Document):
 class Card(Document):
     """Everything shown of one requirement.
 
-    ``facts`` are (name, value) pairs; ``cautions`` the sentences that radiated power or high power call for.
+    ``facts`` are (name, value) pairs; ``cautions`` the sentences that radiated power or high power call for;
+    ``pictures`` those of the budgets that serve it.
     """
 
     id: str
@@ -115,3 +117,4 @@ class Card(Document):
     remarks: tuple[str, ...] = ()
     findings: tuple[Finding, ...] = ()
     cautions: tuple[str, ...] = ()
+    pictures: tuple[Picture, ...] = ()

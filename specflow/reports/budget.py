@@ -19,6 +19,7 @@ from specflow.model.budget_outcome import (
     WayOutcome,
 )
 from specflow.model.report import Align, CellTone, Report, ReportCell, ReportColumn, ReportRow, ReportTable
+from specflow.parameters import Dictionary
 from specflow.reports.figures import DASH, interval, margin, number, rounded, text, with_unit
 
 FIGURE_TITLES = {
@@ -35,6 +36,16 @@ FIGURE_TITLES = {
 }
 _FIXED = {"gain": 2, "noise_figure": 2}
 Named = Callable[[str], str]
+
+
+def titles(dictionary: Dictionary) -> Named:
+    """Return how parameters are called: their title in the dictionary, else their key."""
+
+    def named(key: str) -> str:
+        parameter = dictionary.get(key)
+        return parameter.title if parameter is not None else key
+
+    return named
 
 
 def budget_tables(outcome: BudgetOutcome, place: int, named: Named) -> tuple[ReportTable, ...]:

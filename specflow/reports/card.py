@@ -7,6 +7,7 @@ from collections.abc import Sequence
 from specflow.conditions import set_words
 from specflow.limits import limit_words
 from specflow.model.base import code_key
+from specflow.model.budget_outcome import BudgetOutcome
 from specflow.model.card import Card, PointState
 from specflow.model.conditions import ConditionsSet
 from specflow.model.finding import Finding
@@ -15,10 +16,12 @@ from specflow.model.snapshot import Results, Snapshot
 from specflow.model.verdict import GoverningPoint, RequirementStatus
 from specflow.parameters import Dictionary
 from specflow.reports.about import EXPOSURE_CAUTION, is_radiated
+from specflow.reports.budget import titles
 from specflow.reports.figures import DASH, label_tone, margin, share
 from specflow.reports.margin_bar import margin_bar
 from specflow.reports.matrix import quantity_words
 from specflow.reports.origins import OriginFinder
+from specflow.reports.predicted import predicted_facts, predicted_pictures
 from specflow.reports.proof_grid import proof_grids
 from specflow.reports.trace import requirement_trail
 
@@ -31,8 +34,12 @@ def requirement_card(
     results: Results,
     findings: Sequence[Finding],
     dictionary: Dictionary,
+    outcomes: Sequence[BudgetOutcome] = (),
 ) -> Card:
-    """Return the card of one requirement; only its own evidence is read."""
+    """Return the card of one requirement; only its own evidence is read.
+
+    ``outcomes`` are those of the budgets that serve it.
+    """
     status = results.of(requirement.id)
     finder = OriginFinder(snapshot)
     return Card(
@@ -45,13 +52,17 @@ def requirement_card(
         proved=proved_words(status),
         k=status.k,
         n=status.n,
-        facts=_facts(requirement, status, snapshot, dictionary, finder),
+        facts=(
+            *predicted_facts(requirement, outcomes),
+            *_facts(requirement, status, snapshot, dictionary, finder),
+        ),
         bar=margin_bar(requirement, status),
         grids=proof_grids(requirement, status, snapshot, finder),
         trail=requirement_trail(requirement, snapshot, results, finder=finder, most_points=POINTS_IN_TRAIL),
         remarks=status.remarks,
         findings=findings_about(findings, requirement.id),
         cautions=(EXPOSURE_CAUTION,) if is_radiated(requirement, dictionary) else (),
+        pictures=predicted_pictures(requirement, outcomes, titles(dictionary)),
     )
 
 

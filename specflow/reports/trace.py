@@ -9,7 +9,7 @@ import numpy as np
 from specflow.limits import limit_words
 from specflow.model.base import code_key
 from specflow.model.block import Block
-from specflow.model.budget import Allocation
+from specflow.model.budget import Allocation, Budget
 from specflow.model.card import TrailStep
 from specflow.model.evidence import EvidenceFile, EvidenceTable, ValueColumn
 from specflow.model.origin import Origin, column_letters
@@ -17,6 +17,7 @@ from specflow.model.report import CellTone, ReportCell, ReportColumn, ReportRow,
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Results, Snapshot
 from specflow.model.verdict import ActivityResult, PointResults, RequirementStatus, Verdict
+from specflow.reports.budget_trail import budget_words, line_words
 from specflow.reports.figures import interval, label_tone, margin, share, verdict_tone
 from specflow.reports.lacking import Lacking
 from specflow.reports.origins import OriginFinder
@@ -59,6 +60,19 @@ def _upwards(
             continue
         yield from _upwards(parent, snapshot, results, depth - 1, seen | {parent.id})
         yield _requirement_step(parent, results, depth)
+        yield from _shared_by(parent, requirement, snapshot, depth)
+
+
+def _shared_by(
+    parent: Requirement, child: Requirement, snapshot: Snapshot, depth: int
+) -> Iterator[TrailStep]:
+    """Give the budget by which a parent was shared out, and the lines that the child answers for."""
+    for link in snapshot.all(Allocation):
+        if same(link.parent, parent.id) and same(link.child, child.id):
+            budget = snapshot.find(Budget, link.budget)
+            if budget is not None:
+                yield _budget_step(budget, link, depth)
+                yield _line_step(budget, child, snapshot, depth)
 
 
 def _requirement_step(
@@ -77,13 +91,35 @@ def _requirement_step(
 
 
 def _allocations(requirement: Requirement, snapshot: Snapshot, results: Results) -> Iterator[TrailStep]:
+    """Give the children: those shared out by a budget under it, each below the lines that it answers for."""
     links = {
         code_key(link.child): link for link in snapshot.all(Allocation) if same(link.parent, requirement.id)
     }
-    for child in snapshot.children_of.get(code_key(requirement.id), ()):
+    children = snapshot.children_of.get(code_key(requirement.id), ())
+    told: set[str] = set()
+    for child in children:
         link = links.get(code_key(child.id))
+        budget = snapshot.find(Budget, link.budget) if link is not None else None
         step = _requirement_step(child, results, 1, kind="allocation" if link else "child")
-        yield step.model_copy(update={"text": f"{child.block}: {step.text}{_allocation_source(link)}"})
+        if link is None or budget is None:
+            yield step.model_copy(update={"text": f"{child.block}: {step.text}{_allocation_source(link)}"})
+            continue
+        if code_key(budget.id) not in told:
+            told.add(code_key(budget.id))
+            yield _budget_step(budget, link, 1)
+        yield _line_step(budget, child, snapshot, 2)
+        text = f"{child.block}: {step.text} · {link.state}{_allocation_source(link)}"
+        yield step.model_copy(update={"depth": 3, "text": text})
+
+
+def _budget_step(budget: Budget, link: Allocation, depth: int) -> TrailStep:
+    words, is_current = budget_words(budget, link), link.budget_revision == budget.revision
+    tone = CellTone.PLAIN if is_current else CellTone.DOUBTFUL
+    return TrailStep(depth=depth, kind="budget", id=budget.id, text=words, tone=tone, origin=budget.origin)
+
+
+def _line_step(budget: Budget, child: Requirement, snapshot: Snapshot, depth: int) -> TrailStep:
+    return TrailStep(depth=depth, kind="budget line", text=line_words(budget, child, snapshot))
 
 
 def same(first: str, second: str) -> bool:

@@ -6,6 +6,9 @@ from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from datetime import date
 
+from specflow.model.base import code_key
+from specflow.model.budget import Budget
+from specflow.model.budget_outcome import BudgetOutcome
 from specflow.model.card import Card
 from specflow.model.outline import Outline
 from specflow.model.requirement import Requirement
@@ -15,6 +18,7 @@ from specflow.reports.outline import headline, outlines
 from specflow.reports.status import points_sentence
 from specflow.store import ProjectStore
 from specflow.workflows.evaluate_project import Evaluation, evaluate_project
+from specflow.workflows.show_budget import outcomes_of
 from specflow.workflows.subjects import not_found
 
 
@@ -48,15 +52,42 @@ class Browsing:
         return self.store.revision
 
 
+class _Predictions:
+    """What the budgets of a project come to, each computed when it is first asked for."""
+
+    def __init__(self, evaluation: Evaluation) -> None:
+        self._evaluation = evaluation
+        self._known: dict[str, BudgetOutcome | str] = {}
+
+    def __call__(self, requirement: Requirement) -> Sequence[BudgetOutcome]:
+        """Return the outcomes of the budgets that serve a requirement; of one that cannot be evaluated nothing."""
+        key = code_key(requirement.id)
+        serving = [
+            budget
+            for budget in self._evaluation.snapshot.all(Budget)
+            if key in (code_key(code) for code in budget.requirements)
+        ]
+        missing = [budget for budget in serving if budget.id not in self._known]
+        if missing:
+            made = outcomes_of(missing, self._evaluation.snapshot, self._evaluation.dictionary)
+            self._known.update(made)
+        found = (self._known[budget.id] for budget in serving)
+        return [outcome for outcome in found if not isinstance(outcome, str)]
+
+
 def browse_data(evaluation: Evaluation) -> BrowseData:
     """Return what is shown of an evaluated project."""
     snapshot, results = evaluation.snapshot, evaluation.results
+    predictions = _Predictions(evaluation)
 
     def card(code: str) -> Card:
         requirement = snapshot.find(Requirement, code)
         if requirement is None:
             raise not_found("requirement", code, [one.id for one in snapshot.requirements])
-        return requirement_card(requirement, snapshot, results, evaluation.findings, evaluation.dictionary)
+        predicted = predictions(requirement)
+        return requirement_card(
+            requirement, snapshot, results, evaluation.findings, evaluation.dictionary, predicted
+        )
 
     return BrowseData(
         project=snapshot.project.name,

@@ -10,6 +10,7 @@ from pathlib import Path
 
 from specflow.errors import FileError, SpecflowError
 from specflow.exporters import WRITERS, writer
+from specflow.model.budget import Budget
 from specflow.model.report import Report, ReportTable
 from specflow.reports.about import about_table, cautions
 from specflow.reports.evidence import evidence_table
@@ -18,9 +19,10 @@ from specflow.reports.matrix import compliance_matrix
 from specflow.reports.points import POINT_COLUMNS, points_count, points_table
 from specflow.reports.status import in_tree_order
 from specflow.store import ProjectStore
+from specflow.workflows.budget_parts import BudgetParts, budget_parts
 from specflow.workflows.evaluate_project import Evaluation, evaluate_project
 
-TABLES = ("matrix", "points", "evidence", "findings", "about")
+TABLES = ("matrix", "points", "evidence", "findings", "budgets", "about")
 MOST_POINTS_ON_A_PAGE = 20_000  # a browser lays out no more rows than this in reasonable time
 
 
@@ -45,7 +47,7 @@ def export_report(
     if unknown:
         raise SpecflowError(f"there is no table {unknown[0]!r}", hint=f"tables: {', '.join(TABLES)}")
     evaluation = evaluate_project(store, as_of)
-    report = compliance_report(evaluation, tables or TABLES, for_page=format == "html")
+    report = compliance_report(evaluation, tables or _there(evaluation), format)
     name = re.sub(r"[^\w.-]+", "-", evaluation.snapshot.project.name).strip("-.") or "project"
     return Export(
         rendering.render(report),
@@ -54,20 +56,36 @@ def export_report(
     )
 
 
-def compliance_report(
-    evaluation: Evaluation, tables: Sequence[str] = TABLES, *, for_page: bool = False
-) -> Report:
-    """Return the tables of the report; on a page very many points are left out, saying where they are."""
+def _there(evaluation: Evaluation) -> Sequence[str]:
+    """Return the tables that a project has when none is asked for: budgets only where there are any."""
+    return [name for name in TABLES if name != "budgets" or evaluation.snapshot.all(Budget)]
+
+
+def compliance_report(evaluation: Evaluation, tables: Sequence[str] = TABLES, format: str = "json") -> Report:
+    """Return the tables of the report for one format.
+
+    On a page very many points are left out, saying where they are; in a workbook budgets are worksheets that calculate.
+    """
     snapshot, results = evaluation.snapshot, evaluation.results
+    found: list[ReportTable] = []
+    budgets = BudgetParts()
+    for name in tables:
+        if name == "budgets":
+            budgets = budget_parts(evaluation, for_workbook=format == "xlsx")
+            found.extend(budgets.tables)
+        else:
+            found.append(_table(name, evaluation, for_page=format == "html"))
     return Report(
         title=f"{snapshot.project.name}: compliance",
         subtitle=f"judged as of {results.as_of}, project revision {snapshot.revision}",
         cautions=cautions(snapshot, evaluation.dictionary),
-        tables=tuple(_table(name, evaluation, for_page) for name in tables),
+        tables=tuple(found),
+        pictures=budgets.pictures,
+        sheets=budgets.sheets,
     )
 
 
-def _table(name: str, evaluation: Evaluation, for_page: bool) -> ReportTable:
+def _table(name: str, evaluation: Evaluation, *, for_page: bool) -> ReportTable:
     snapshot, results, dictionary = evaluation.snapshot, evaluation.results, evaluation.dictionary
     requirements, depths = in_tree_order(snapshot)
     match name:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 from difflib import get_close_matches
 
@@ -13,7 +13,7 @@ from specflow.model.budget_outcome import BudgetOutcome, Way
 from specflow.model.report import Report, ReportTable
 from specflow.model.snapshot import Snapshot
 from specflow.parameters import Dictionary
-from specflow.reports.budget import budget_report
+from specflow.reports.budget import budget_report, titles
 from specflow.reports.budget_list import budgets_table
 from specflow.store import ProjectStore
 from specflow.workflows.budget_outcome import HowToCompute, Step, budget_outcome
@@ -61,7 +61,10 @@ def show_budget(
 
 
 def outcomes_of(
-    budgets: Sequence[Budget], snapshot: Snapshot, dictionary: Dictionary, how: HowToCompute
+    budgets: Sequence[Budget],
+    snapshot: Snapshot,
+    dictionary: Dictionary,
+    how: HowToCompute | None = None,
 ) -> dict[str, BudgetOutcome | str]:
     """Return what each budget comes to, by its id; of one that cannot be evaluated, the reason."""
     found: dict[str, BudgetOutcome | str] = {}
@@ -71,16 +74,6 @@ def outcomes_of(
         except SpecflowError as error:
             found[budget.id] = str(error)
     return found
-
-
-def titles(dictionary: Dictionary) -> Callable[[str], str]:
-    """Return how parameters are called: their title in the dictionary, else their key."""
-
-    def named(key: str) -> str:
-        parameter = dictionary.get(key)
-        return parameter.title if parameter is not None else key
-
-    return named
 
 
 def budget_named(snapshot: Snapshot, code: str) -> Budget:
