@@ -108,7 +108,7 @@ def _count(columns: EvidenceColumns) -> int:
 def _ask_about_remarks(work: TableWork) -> None:
     """Ask about remarks between rows of data that state something, as "T = 85 °C" over a group of rows."""
     for remark in work.table.between:
-        if states_something(remark.text):
+        if remark.states or states_something(remark.text):
             cell = f"row {remark.row}"
             remedy = "give it a column of its own, or make each group a table with headers"
             work.ask(

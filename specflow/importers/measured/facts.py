@@ -36,14 +36,17 @@ def read_preamble(grid: Grid, top: int, header_row: int) -> Preamble:
     facts: list[Fact] = []
     title = ""
     for row in range(top, header_row):
-        cells = [
-            (column, value) for column, value in enumerate(grid.row(row), start=1) if not is_blank(value)
-        ]
+        cells = _filled(grid, row)
         found = list(_facts(grid, row, cells))
         facts += found
         if not found and not title and cells and isinstance(cells[0][1], str):
             title = " ".join(cells[0][1].split())
     return Preamble(tuple(facts), title)
+
+
+def read_facts(grid: Grid, row: int) -> tuple[Fact, ...]:
+    """Read the facts that one row states."""
+    return tuple(_facts(grid, row, _filled(grid, row)))
 
 
 def read_across(grid: Grid, key_row: int, value_row: int) -> tuple[Fact, ...]:
@@ -63,6 +66,10 @@ def states_something(text: str) -> bool:
     return bool(pair and pair["value"] and re.search(r"[0-9]", pair["value"])) or bool(
         re.search(r"[0-9]\s*(?:°|[kMG]?Hz\b|dBm?\b|V\b|K\b|deg)", text)
     )
+
+
+def _filled(grid: Grid, row: int) -> list[tuple[int, Value]]:
+    return [(column, value) for column, value in enumerate(grid.row(row), start=1) if not is_blank(value)]
 
 
 def _facts(grid: Grid, row: int, cells: list[tuple[int, Value]]) -> Iterator[Fact]:

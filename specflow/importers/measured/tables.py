@@ -16,11 +16,11 @@ import numpy as np
 
 from specflow.importers.measured.cells import ColumnCells, Flags, Rows, read_column
 from specflow.importers.measured.header_text import header_key, known_unit
+from specflow.importers.measured.statements import is_reading, statement_rows, statement_text
 from specflow.importers.readers import Grid, Value, address, is_blank, looks_numeric
 
 Recognises = Callable[[str], bool]
 
-_LIKE_A_READING = re.compile(r"^[<>≤≥=~+\-−±]*\s*[.,]?[0-9]")
 _NUMBER = r"[<>≤≥~±+\-−]*\s*[0-9][0-9.,]*(?:[eE][+\-]?[0-9]+)?"
 _ONE_READING = re.compile(rf"^{_NUMBER}(?:\s*(?:±|\+/-|to|\.\.+|…)\s*{_NUMBER})?\s*[^\s0-9]{{0,6}}$")
 _LOOK_AHEAD = 5
@@ -48,11 +48,15 @@ class HeaderCell:
 
 @dataclass(frozen=True, slots=True)
 class Remark:
-    """A row inside a table that is no data: its text ("" for repeated headers) and what is said about it."""
+    """A row inside a table that is no data: its text ("" for repeated headers) and what is said about it.
+
+    ``states`` says that the row holds a key that is known, with its value.
+    """
 
     row: int
     text: str
     words: str
+    states: bool = False
 
 
 @dataclass(frozen=True)
@@ -165,19 +169,13 @@ def _has_numbers_below(grid: Grid, row: int, texts: dict[int, str]) -> bool:
         cells = grid.rows[below - grid.first_row]
         if below in grid.comment_rows or all(is_blank(value) for value in cells):
             continue
-        filled = [column for column in texts if _is_reading(grid.value(below, column))]
+        filled = [column for column in texts if is_reading(grid.value(below, column))]
         if filled and sum(not is_blank(value) for value in cells) >= min(2, len(texts)):
             return True
         seen += 1
         if seen >= _LOOK_AHEAD:
             return False
     return False
-
-
-def _is_reading(value: Value) -> bool:
-    if isinstance(value, str):
-        return _LIKE_A_READING.match(value.strip()) is not None
-    return isinstance(value, float | int) and not isinstance(value, bool)
 
 
 def _headers(grid: Grid, row: int, count: int) -> tuple[HeaderCell, ...]:
@@ -285,8 +283,14 @@ class _Body:
                 data[row - self._first] = False
         written = data.copy()
         end = size
-        for place in np.flatnonzero(data & (numeric == 0)).tolist():
-            action = self._row_of_words(place, int(filled[place]), int(beside[place]))
+        named = [self._cells[column] for column in self._named]
+        outside = [cells for column, cells in self._cells.items() if column not in self._named]
+        stating = {row - self._first for row in statement_rows(self._grid, named, outside)}
+        for place in sorted(stating.union(np.flatnonzero(data & (numeric == 0)).tolist())):
+            if place in stating and not self._is_header(self._first + place):
+                action = self._statement(place, bool(data[:place].any()))
+            else:
+                action = self._row_of_words(place, int(filled[place]), int(beside[place]))
             if action == "ends":
                 end = place
                 break
@@ -319,15 +323,46 @@ class _Body:
             stop = start
         return int(np.flatnonzero(data)[-1]) + 1 if is_followed else stop
 
+    def _statement(self, place: int, has_data: bool) -> str:
+        """A row that states something ends the table where headers follow; else it is a remark that speaks."""
+        row = self._first + place
+        if has_data and self._is_above_header(row):
+            return "ends"
+        words = statement_text(self._grid, row)
+        self._remarks.append(Remark(row, words, f"row {row} is no data: {words[:60]!r}", states=True))
+        return "skip"
+
+    def _is_above_header(self, row: int) -> bool:
+        """Whether, before the next row of readings, a row of headers follows."""
+        for below in range(row + 1, self._grid.last_row + 1):
+            if self._is_header(below):
+                return True
+            filled = [value for value in self._grid.rows[below - self._grid.first_row] if not is_blank(value)]
+            if filled and is_reading(filled[0]):
+                return False
+        return False
+
+    def _is_header(self, row: int) -> bool:
+        texts = _words(self._grid, row)
+        if len(texts) < 2:
+            return False
+        return self._repeats(texts) or self._begins_another(row, texts)
+
+    def _repeats(self, texts: dict[int, str]) -> bool:
+        return {header_key(text) for text in texts.values()} <= {
+            header_key(header.text) for header in self._headers
+        }
+
+    def _begins_another(self, row: int, texts: dict[int, str]) -> bool:
+        return all(map(self._recognises, texts.values())) and _has_numbers_below(self._grid, row, texts)
+
     def _row_of_words(self, place: int, filled: int, beside: int) -> str:
         row = self._first + place
         texts = _words(self._grid, row)
-        mine = {header_key(header.text) for header in self._headers}
-        if len(texts) >= 2 and {header_key(text) for text in texts.values()} <= mine:
+        if len(texts) >= 2 and self._repeats(texts):
             self._remarks.append(Remark(row, "", f"row {row} repeats the headers"))
             return "skip"
-        known = sum(map(self._recognises, texts.values()))
-        if len(texts) >= 2 and known == len(texts) and _has_numbers_below(self._grid, row, texts):
+        if len(texts) >= 2 and self._begins_another(row, texts):
             return "ends"
         if filled == 1 and beside == 0 and len(self._named) > 1:
             words = next(str(cells.values[place]) for cells in self._cells.values() if cells.filled[place])
@@ -340,5 +375,5 @@ def rows_of_numbers(grid: Grid, top: int, stop: int) -> Iterator[int]:
     """Give the rows from ``top`` up to, not including, ``stop`` that hold several numbers."""
     for row in range(top, stop):
         cells = grid.rows[row - grid.first_row]
-        if row not in grid.comment_rows and sum(map(_is_reading, cells)) > 1:
+        if row not in grid.comment_rows and sum(map(is_reading, cells)) > 1:
             yield row

@@ -18,6 +18,7 @@ SAMPLE_LINES = 400
 
 _NUMBER = re.compile(r"[<>≤≥]?\s*[+\-−]?(?:[0-9]+(?:[.,][0-9]*)?|[.,][0-9]+)(?:[eE][+\-−]?[0-9]+)?\s*%?")
 _WITH_COMMA = re.compile(r"[^,]*[0-9]*,[0-9]+[^,]*")
+_COMMA_IN_NUMBER = re.compile(r"[0-9],[0-9]")
 _LIKE_THOUSANDS = re.compile(r"[+\-−]?[0-9]{1,3},[0-9]{3}")
 
 
@@ -67,9 +68,11 @@ def split(line: str, delimiter: str) -> list[str]:
 def split_to_width(line: str, width: int, single_blanks: bool = False) -> list[str] | None:
     """The fields of a header line that is parted otherwise than the body: by whatever gives ``width`` fields.
 
-    Single blanks part words, too, and count only where the body itself is parted by blanks.
+    Single blanks part words, too, and count only where the body itself is parted by blanks. A comma between digits
+    ("T: 23,5 °C") is no separator there.
     """
-    ways = [split(line, delimiter) for delimiter in DELIMITERS if delimiter != BLANKS]
+    others = [delimiter for delimiter in DELIMITERS if delimiter != BLANKS]
+    ways = [split(line, one) for one in others if one != "," or not _COMMA_IN_NUMBER.search(line)]
     ways.append(re.split(r"\t+| {2,}", line.strip()))
     if single_blanks:
         ways.append(line.split())

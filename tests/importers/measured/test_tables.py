@@ -159,3 +159,53 @@ def test_a_hidden_sheet_is_skipped_unless_named(tmp_path: Path) -> None:
     workbook.save(path)
     assert measure(path).tables == () and "Old" in measure(path).skipped[0]
     assert len(measure(path, sheets=("old",)).tables) == 1
+
+
+def test_what_stands_over_a_second_table_of_the_same_headers_is_said_of_that_table(tmp_path: Path) -> None:
+    header = ["f (GHz)", "Gain (dB)"]
+    for between in (
+        [[], ["S/N", "LNA-2"], ["Ambient temperature (°C)", 85]],
+        [["S/N", "LNA-2"], ["Ambient temperature (°C)", 85]],
+        [["Second run"], ["S/N: LNA-2"], ["Ambient: 85 °C"]],
+    ):
+        rows = [["S/N", "LNA-1"], ["Ambient", "23 °C"], header, [27.5, 20], [30, 19]]
+        rows += [*between, header, [27.5, 18], [30, 17]]
+        first, second = map(taken, measure(book(tmp_path / "a.xlsx", rows), stated={}).tables)
+        assert first.columns is not None and second.columns is not None
+        assert (first.columns.items.word(0), second.columns.items.word(0)) == ("LNA-1", "LNA-2")
+        assert (low(first, "Gain"), low(second, "Gain")) == ([20, 19], [18, 17])
+        assert list(first.columns.conditions.numeric["temperature_ambient"]) == [23, 23]
+        assert list(second.columns.conditions.numeric["temperature_ambient"]) == [85, 85]
+        assert first.rejected == second.rejected == ()
+
+
+def test_a_statement_beside_the_table_ends_it_too(tmp_path: Path) -> None:
+    header = [None, None, "f (GHz)", "Gain (dB)"]
+    rows = [
+        ["DUT", "LNA-1"],
+        header,
+        [None, None, 27.5, 20],
+        ["DUT", "LNA-2"],
+        header,
+        [None, None, 27.5, 18],
+    ]
+    first, second = map(taken, measure(book(tmp_path / "a.xlsx", rows), stated={}).tables)
+    assert first.columns is not None and second.columns is not None
+    assert (first.columns.items.word(0), second.columns.items.word(0)) == ("LNA-1", "LNA-2")
+
+
+def test_a_key_with_its_value_among_the_rows_is_asked_about(tmp_path: Path) -> None:
+    for between in (
+        ["S/N", "LNA-2"],
+        ["DUT: spare"],
+        ["Ambient temperature (°C)", 85],
+        ["Temperature", 85, "°C"],
+    ):
+        rows = [["f (GHz)", "Gain (dB)", "NF (dB)"], [27.5, 20, 1], between, [27.5, 19, 1]]
+        table = one_table(book(tmp_path / "a.xlsx", rows))
+        assert "stands among the rows and may hold for those below" in questions(table)
+
+
+def test_items_and_modes_in_the_first_column_are_no_statements(tmp_path: Path) -> None:
+    rows = [["DUT", "Gain (dB)"], ["LNA-1", 20], ["LNA-2", 19], ["DUT", "Gain (dB)"], ["LNA-1", 18]]
+    assert low(taken(one_table(book(tmp_path / "a.xlsx", rows), stated={})), "Gain") == [20, 19, 18]

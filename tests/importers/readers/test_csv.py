@@ -191,3 +191,11 @@ def test_number_tables_are_parted_whatever_the_marks(table: list[list[str]], mar
     layout = find_layout(["f" + delimiter + "G" + delimiter + "NF", *lines])
     assert layout.delimiter == delimiter[0]
     assert layout.width == 3
+
+
+@pytest.mark.parametrize("line", ["1,5", "Ambient: 23,5 °C", "Gain 1,5"])
+def test_a_decimal_comma_in_a_line_of_one_field_is_no_separator(tmp_path: Path, line: str) -> None:
+    path = tmp_path / "a.csv"
+    path.write_text(f"{line}\nf;G\n20,5;1,5\n{line}\n27,5;1,7\n", encoding="utf-8")
+    grid = next(iter(open_grids(path)))
+    assert list(grid.row(1)) == list(grid.row(4)) == [line]
