@@ -18,7 +18,7 @@ def _ready(facts: Facts) -> bool:
 
 
 def _verified(facts: Facts) -> bool:
-    return _ready(facts) and facts.approved and not facts.nonconformances
+    return _ready(facts) and facts.approved and not (facts.nonconformances or facts.open_children)
 
 
 #: When each label applies. The order is that of ``Label``: the first that applies is shown.
@@ -33,8 +33,8 @@ _APPLIES: dict[Label, Callable[[Facts], bool]] = {
     Label.REVERIFY: lambda facts: facts.stale,
     Label.TBD: lambda facts: facts.to_be_defined,
     Label.UNALLOCATED: lambda facts: facts.unallocated,
-    Label.NOT_PLANNED: lambda facts: not facts.counted and not facts.planned,
-    Label.PLANNED: lambda facts: not facts.counted,
+    Label.NOT_PLANNED: lambda facts: not facts.counted and not facts.planned and not facts.in_progress,
+    Label.PLANNED: lambda facts: not facts.counted and facts.planned,
     Label.UNDECIDABLE: lambda facts: Verdict.UNDECIDABLE in facts.verdicts,
     Label.INSUFFICIENT: lambda facts: Verdict.INSUFFICIENT in facts.verdicts,
     Label.PARTIALLY_VERIFIED: lambda facts: Verdict.NONE in facts.verdicts,
@@ -80,6 +80,8 @@ def _open_reason(facts: Facts, reason: Label) -> str:
         parts.append(f"{', '.join(facts.nonconformances)} open")
         if facts.fails and facts.waiving.all_covered:
             parts.append(f"then waived by {', '.join(facts.waiving.covering)}")
+    if facts.open_children:
+        parts.append(f"below it open: {', '.join(facts.open_children)}")
     if facts.fails and facts.waiving.requested:
         parts.append(f"waiver requested ({', '.join(facts.waiving.requested)})")
     return "; ".join(parts)

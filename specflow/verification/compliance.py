@@ -15,7 +15,10 @@ from specflow.verification.waiving import NO_WAIVER, Waiving
 
 @dataclass(frozen=True, slots=True)
 class Facts:
-    """What the axes, the label and the close-out of a requirement are derived from."""
+    """What the axes, the label and the close-out of a requirement are derived from.
+
+    ``counted``: something counts; ``in_progress``: there are readings, which may not.
+    """
 
     applicable: bool = True
     to_be_defined: bool = False
@@ -23,6 +26,7 @@ class Facts:
     unallocated: bool = False
     planned: bool = True
     counted: bool = False
+    in_progress: bool = False
     complete: bool = False
     verdicts: frozenset[Verdict] = frozenset({Verdict.NONE})
     some_proved: bool = False
@@ -34,6 +38,7 @@ class Facts:
     waiving: Waiving = NO_WAIVER
     approved: bool = False
     nonconformances: tuple[str, ...] = ()
+    open_children: tuple[str, ...] = ()
     not_applicable_reason: str = ""
 
     @property

@@ -37,7 +37,7 @@ def status_of(requirement: Requirement, workspace: Workspace, decisions: Decisio
         found = assess(requirement, activities, workspace)
     except (ConditionsError, ExpressionError) as error:
         return status_from(requirement, facts, None, (str(error), *remarks))
-    facts = facts if facts.to_be_defined else _with_evidence(facts, requirement, found, workspace, decisions)
+    facts = facts if facts.to_be_defined else with_evidence(facts, requirement, found, workspace, decisions)
     return status_from(requirement, facts, found, (*_said(requirement, facts, found, decisions), *remarks))
 
 
@@ -84,9 +84,10 @@ def _unallocated(requirement: Requirement, workspace: Workspace, decisions: Deci
     return needed and key not in decisions.allocated and not workspace.snapshot.children_of.get(key)
 
 
-def _with_evidence(
+def with_evidence(
     facts: Facts, requirement: Requirement, found: Assessment, workspace: Workspace, decisions: Decisions
 ) -> Facts:
+    """Return the facts with what the evidence comes to."""
     outcomes, failing = found.outcomes, _failing(found)
     results = [outcome.result for outcome in outcomes]
     split, remarks = declared(decisions.splits.get(code_key(requirement.id), ()), failing)
@@ -94,6 +95,7 @@ def _with_evidence(
     return replace(
         facts,
         counted=any(outcome.counted for outcome in outcomes),
+        in_progress=any(result.state is PointsState.IN_PROGRESS for result in results),
         complete=all(result.state is PointsState.FULLY_COVERED for result in results),
         verdicts=verdicts,
         some_proved=any(result.k for result in results),
