@@ -3,7 +3,8 @@
 Where things live:
 
 - ``evaluate`` the entrance; ``workspace`` what many requirements share; ``status`` one requirement as a whole
-- ``standing`` may a record count; ``changed`` what a change record touches; ``dates``; ``comparable`` may it be compared; ``residuals`` readings near an instrument's floor
+- ``standing`` may a record count; ``changed`` what a change record touches; ``dates`` when people decided
+- ``comparable`` may it be compared; ``residuals`` readings near an instrument's floor
 - ``records`` the readings of one quantity, tables stacked (``stacking``); ``map_choice`` whose conditions they state
 - ``limit_inputs`` what a limit is evaluated at; ``readings`` readings judged against it; ``judging`` by its shape;
   ``populations`` statistics of many values; ``sweeps`` masks over an axis of the evidence's own; ``spectrum`` what a
@@ -12,7 +13,8 @@ Where things live:
   there; ``conflicts`` contradictions
 - ``alternatives`` limits with members on different quantities, put together
 - ``activity`` k of n and the governing point; ``assessment`` all activities of one requirement
-- ``applicability``, ``waiving``, ``splits``, ``decisions`` what people decided; ``compliance`` and ``closeout`` what follows
+- ``applicability``, ``waiving``, ``splits``, ``decisions`` what people decided
+- ``compliance`` and ``closeout`` what follows
 - ``lower_level`` requirements met by their children; ``unmatched`` evidence that serves nothing
 
 Everything is computed from a snapshot and a date; nothing is stored, and no file is read here.

@@ -27,6 +27,7 @@ from specflow.model.base import code_key
 from specflow.model.block import HardwareType
 from specflow.model.evidence import EvidenceTable
 from specflow.model.requirement import Activity, Method, Provers, Stage
+from specflow.verification.model_range import is_validated
 from specflow.verification.records import Records, Source
 from specflow.verification.standing import ACCEPTED, STALE
 from specflow.verification.workspace import Workspace
@@ -183,7 +184,7 @@ def _rank(activity: Activity, source: Source, item: str, workspace: Workspace) -
         return REPRESENTATIVE if fit else LESS_REPRESENTATIVE
     if table.method is Method.SIMILARITY:
         return SIMILAR
-    return VALIDATED if table.simulation_validated else REASONED
+    return VALIDATED if is_validated(table.simulation_validated) else REASONED
 
 
 def _outdated(activity: Activity, table: EvidenceTable) -> str:

@@ -11,6 +11,8 @@ from specflow.model.verdict import CloseOut, Compliance, Label, Verdict
 from specflow.verification.closeout import label_and_close_out
 from specflow.verification.compliance import Facts, compliance
 from specflow.verification.waiving import Waiving
+from tests.builders import an_activity, an_evidence_table
+from tests.verification.evaluating import status_of
 
 
 def label(facts: Facts) -> Label:
@@ -134,3 +136,10 @@ def test_a_waiver_never_changes_compliance() -> None:
 
 def test_conditional_fail_is_non_compliant() -> None:
     assert compliance(without(Verdict.CONDITIONAL_FAIL)) is Compliance.NON_COMPLIANT
+
+
+def test_readings_that_may_not_count_are_no_missing_plan() -> None:
+    """Nobody planned a verification, and somebody measured: the label says how far that got."""
+    table = an_evidence_table(accepted_by="", provisional=True)
+    assert status_of(an_activity(planned=False), table).label is Label.PARTIALLY_VERIFIED
+    assert status_of(an_activity(planned=True), table).label is Label.PLANNED
