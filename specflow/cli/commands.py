@@ -35,6 +35,7 @@ COMMANDS = (
     CommandEntry("init", "Start a project: an empty project file and a workbook to fill in."),
     CommandEntry("load", "Load requirements, blocks and conditions from a workbook."),
     CommandEntry("budget", "Show budgets: along the chain, shares, slopes, margins."),
+    CommandEntry("allocate", "Allocate a budget over its blocks."),
     CommandEntry("attach", "Attach measurement files."),
     CommandEntry("status", "Show what is proved, failing and missing."),
     CommandEntry("check", "List the findings of the rules."),

@@ -1,0 +1,119 @@
+"""Allocating through the store: proposals, closure, hand overrides, what no longer follows."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import pytest
+
+from specflow.errors import ConflictError, DocumentError
+from specflow.model.budget import Allocation, Budget, Reserve
+from specflow.model.requirement import Requirement
+from specflow.workflows.allocate import (
+    AllocateOptions,
+    ByHand,
+    accept_allocation,
+    preview_allocation,
+)
+from specflow.workflows.solve_budget import solve_budget
+from tests.budgets import receiver
+from tests.builders import editing
+
+
+def test_proposals_become_requirements_with_their_links(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        preview = preview_allocation(store, "rx", AllocateOptions("equal"))
+        assert preview.closure.closes is True
+        assert store.load().find(Requirement, "LNA-NOISE-FIGURE") is None  # a preview stores nothing
+        accept_allocation(store, preview, by="A. Invented")
+        snapshot = store.load()
+    child = snapshot.find(Requirement, "LNA-NOISE-FIGURE")
+    assert child is not None
+    assert child.parents == ("SYS-NF",)
+    assert child.conditions == "HOT-COLD"
+    assert child.limit.text.startswith("<= ")
+    gain = snapshot.find(Requirement, "LNA-GAIN")
+    assert gain is not None and gain.limit.text == "17.5 dB..18.5 dB"
+    assert set(gain.parents) == {"SYS-NF", "SYS-IP"}
+    link = snapshot.find(Allocation, "SYS-NF > LNA-NOISE-FIGURE")
+    assert link is not None
+    assert (link.budget, link.budget_revision, link.parent_revision) == ("RX", 1, 1)
+    assert link.proposed == child.limit.text and link.state == "proposed"
+
+
+def test_allocating_again_changes_nothing(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        accept_allocation(store, preview_allocation(store, "RX"), by="A. Invented")
+        assert not preview_allocation(store, "RX").changes
+
+
+def test_what_is_given_by_hand_keeps_reason_and_difference_and_counts_in_closure(tmp_path: Path) -> None:
+    hand = ByHand("LNA", "noise_figure", "<= 2.8 dB", "the supplier offers no better")
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        preview = preview_allocation(store, "RX", AllocateOptions("equal", by_hand=[hand]))
+        assert preview.closure.closes is False
+        one = next(one for one in preview.proposals if one.child.id == "LNA-NOISE-FIGURE")
+        assert one.given.text == "<= 2.8 dB" and "relaxed by" in one.difference
+        accept_allocation(store, preview, by="A. Invented")
+        again = preview_allocation(store, "RX", AllocateOptions("equal"))
+        kept = next(one for one in again.proposals if one.child.id == "LNA-NOISE-FIGURE")
+        link = store.load().find(Allocation, "SYS-NF > LNA-NOISE-FIGURE")
+    assert kept.reason == "the supplier offers no better" and kept.given.text == "<= 2.8 dB"
+    assert not again.changes
+    assert link is not None and link.manual_reason == "the supplier offers no better"
+
+
+def test_by_hand_needs_a_reason_and_a_share(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        for hand, message in (
+            (ByHand("LNA", "noise_figure", "<= 2 dB", ""), "no reason is given"),
+            (ByHand("LNA", "op1db", ">= 2 dBm", "why"), "allocates no op1db to LNA"),
+        ):
+            with pytest.raises(DocumentError, match=message):
+                preview_allocation(store, "RX", AllocateOptions(by_hand=[hand]))
+
+
+def test_reserve_is_stored_with_its_holder_and_the_links_name_the_new_revision(tmp_path: Path) -> None:
+    reserve = Reserve(parameter="noise_figure", amount=0.3, unit="dB", holder="Systems")
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        plain = preview_allocation(store, "RX", AllocateOptions("equal"))
+        kept = preview_allocation(store, "RX", AllocateOptions("equal", reserves=[reserve]))
+        accept_allocation(store, kept, by="A. Invented")
+        snapshot = store.load()
+    budget = snapshot.find(Budget, "RX")
+    link = snapshot.find(Allocation, "SYS-NF > LNA-NOISE-FIGURE")
+    assert budget is not None and budget.revision == 2 and budget.reserves == (reserve,)
+    assert link is not None and link.budget_revision == 2
+    first, second = (
+        next(one.allotment.high for one in each.proposals if one.child.id == "LNA-NOISE-FIGURE")
+        for each in (plain, kept)
+    )
+    assert second < first
+
+
+def test_a_project_that_went_on_refuses_an_old_preview(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        preview = preview_allocation(store, "RX")
+        budget = store.load().find(Budget, "RX")
+        assert budget is not None
+        store.apply([editing(budget, title="Receiver")], by="somebody")
+        with pytest.raises(ConflictError):
+            accept_allocation(store, preview, by="A. Invented")
+
+
+def test_least_effort_says_what_binds_and_closes(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        preview = preview_allocation(store, "RX", AllocateOptions("least effort"))
+    assert preview.closure.closes is True
+    assert any(one.startswith("SYS-NF at ") for one in preview.binding)
+    assert any(one.startswith("SYS-IP at ") for one in preview.binding)
+    assert {one.line for one in preview.strains} >= {"LNA noise_figure", "IF iip3"}
+
+
+def test_solving_a_line_for_both_limits(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        solved = solve_budget(store, "RX", "LNA gain")
+    assert solved.solution.at_least is not None and solved.solution.at_most is not None
+    assert solved.solution.at_least.requirement == "SYS-NF"
+    assert solved.solution.at_most.requirement == "SYS-IP"
+    assert len(solved.table.rows) == 3
