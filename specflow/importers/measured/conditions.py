@@ -68,7 +68,7 @@ def read_conditions(
 def _numbers(
     table: FoundTable, meaning: ColumnMeaning, rows: Rows, rejects: Rejects, read: ReadConditions
 ) -> NDArray[np.float64]:
-    own = Rejects(rejects.sheet)
+    own = rejects.apart()
     numbers = read_numbers(table, meaning.column, meaning.unit, rows, own)
     rejects.cells += own.cells
     if numbers.problem:

@@ -50,7 +50,8 @@ def read_table(located: LocatedTable, context: Context, person: Mapping[str, str
     table, mapping, key = located.table, located.mapping, located.key
     stated = collected(located, context, person)
     sheet = "" if table.grid.name == table.grid.file else table.grid.name
-    work = TableWork(table, context, mapping, stated, Rejects(sheet))
+    rejects = Rejects(sheet, keep_placeholders=mapping.keep_placeholders)
+    work = TableWork(table, context, mapping, stated, rejects)
     work.notes += [remark.words for remark in table.stepped_over]
     _ask_about_remarks(work)
     work.meanings = read_meanings(table, context, mapping, stated)

@@ -90,6 +90,7 @@ class LayoutMapping:
     header_rows: int = 1
     include_hidden_rows: bool = False
     keep_summary_rows: bool = False
+    keep_placeholders: bool = False
     stated: Mapping[str, str] = field(default_factory=dict)
     columns: Sequence[ColumnMapping] = ()
     pivot: PivotMapping | None = None
@@ -220,6 +221,7 @@ def write_mapping(mapping: LayoutMapping, reasons: Mapping[str, str] | None = No
         "header_rows",
         "include_hidden_rows",
         "keep_summary_rows",
+        "keep_placeholders",
     ):
         value = getattr(mapping, name)
         if value not in ("", False) and (name, value) != ("header_rows", 1):

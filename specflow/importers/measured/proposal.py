@@ -20,7 +20,7 @@ HEAD = f"""# A mapping of measurement tables: how the columns of each layout are
 # condition:   dimension, unit; fill_down = true where a blank cell means the one above
 # uncertainty: unit, k = 2 (1: a standard uncertainty), of = "header of the values"
 # table:       block, method, stage; [table.stated] for conditions that hold for all rows; header_rows = 2;
-#              include_hidden_rows, keep_summary_rows, skip = true
+#              include_hidden_rows, keep_summary_rows, keep_placeholders, skip = true
 # pivot:       [table.pivot] header = "Gain @ {{frequency}} GHz", parameter, unit, units = {{ frequency = "GHz" }}
 format = {FORMAT}
 """

@@ -14,6 +14,7 @@ from numpy.typing import NDArray
 
 from specflow.errors import UnitError
 from specflow.importers.measured.cells import Rows
+from specflow.importers.measured.placeholders import reject_placeholders
 from specflow.importers.measured.rejects import Rejects
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.measured.unit_source import format_runs
@@ -32,7 +33,6 @@ from specflow.units import (
 
 Floats = NDArray[np.float64]
 
-PLACEHOLDER = 9.9e37  # SCPI-1999 volume 1, 7.2.1: infinity, and with 9.91E37 not-a-number
 _FAULTY_BLANKS = ("not a number", "error in the cell", "SCPI")
 
 
@@ -51,16 +51,12 @@ def read_numbers(table: FoundTable, column: int, unit: str, rows: Rows, rejects:
     cells = table.cells(column)
     low = cells.numbers_at(rows)
     numbers = Numbers(low, low)
+    reject_placeholders(low, column, rows, rejects)
     _apply_formats(table, column, parse_unit(unit or "1"), rows, numbers, rejects)
-    too_great = np.abs(low) >= PLACEHOLDER
-    if too_great.any():
-        for place in np.flatnonzero(too_great).tolist():
-            rejects.add(
-                int(rows[place]), column, float(low[place]), "a placeholder of the instrument, no number"
-            )
-        low[too_great] = np.nan
     if cells.odd:
         _read_odd(table, column, parse_unit(unit or "1"), rows, numbers, rejects)
+        if numbers.high is numbers.low:  # a bound is no placeholder
+            reject_placeholders(numbers.low, column, rows, rejects)
     empty = int(np.count_nonzero(~cells.filled[rows - cells.first]))
     if empty:
         rejects.blank["nothing written"] += empty

@@ -25,11 +25,19 @@ class Rejected:
 
 @dataclass
 class Rejects:
-    """What one table has rejected, and blank cells by their reason."""
+    """What one table has rejected, and blank cells by their reason.
+
+    ``keep_placeholders`` says that -999 and the like are readings of this table.
+    """
 
     sheet: str
     cells: list[Rejected] = field(default_factory=list)
     blank: Counter[str] = field(default_factory=Counter)
+    keep_placeholders: bool = False
+
+    def apart(self) -> Rejects:
+        """Return empty ones of the same table, for cells whose blanks are not counted."""
+        return Rejects(self.sheet, keep_placeholders=self.keep_placeholders)
 
     def add(self, row: int, column: int, value: Value, reason: str) -> None:
         """Reject one cell."""

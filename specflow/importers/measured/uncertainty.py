@@ -58,7 +58,7 @@ def from_column(
     table: FoundTable, meaning: ColumnMeaning, value: ColumnMeaning, low: Floats, rows: Rows, rejects: Rejects
 ) -> Spread:
     """Read an uncertainty column that belongs to ``value``, whose readings are ``low``."""
-    own = Rejects(rejects.sheet)
+    own = rejects.apart()
     numbers = read_numbers(table, meaning.column, meaning.unit, rows, own)
     rejects.cells += own.cells
     letter = column_letter(meaning.column)

@@ -199,3 +199,36 @@ def test_decimal_commas_come_in_rightly_or_not_at_all(tmp_path_factory: Any, num
     reasons = rejected(table)
     for row, (read, written) in enumerate(zip(low(taken(table), "Gain"), numbers, strict=True), start=2):
         assert read == float(written) or (np.isnan(read) and "can be read as" in reasons[f"B{row}"])
+
+
+@pytest.mark.parametrize(
+    "mark", [-999, 999, -999.9, 9999, -2147.48, -2147.483648, 2147483647, 9.9e37, "-999", "-999.9 dB"]
+)
+def test_a_placeholder_far_from_the_readings_is_rejected_with_its_reason(tmp_path: Path, mark: Any) -> None:
+    table = taken(values_of(tmp_path, "Gain (dB)", [20, mark, 19.5, mark]))
+    assert table.values == 2 and set(rejected(table)) == {"B3", "B5"}
+    assert "instrument" in rejected(table)["B3"]
+
+
+def test_a_column_of_nothing_but_placeholders_gives_no_values(tmp_path: Path) -> None:
+    table = taken(values_of(tmp_path, "Gain (dB)", [-999, -2147.48]))
+    assert table.values == 0 and len(rejected(table)) == 2
+
+
+def test_a_number_of_nines_among_its_like_is_a_reading(tmp_path: Path) -> None:
+    for values in ([998, 999, 1001], [600, 9999, 5200], [-1200, -999], [999.99, 1500]):
+        assert low(taken(values_of(tmp_path, "Supply current (mA)", values)), "Supply current") == values
+
+
+def test_placeholders_are_readings_where_the_mapping_keeps_them(tmp_path: Path) -> None:
+    rows = [["f (GHz)", "Supply current (mA)"], [999, 999], [27.5, 9.9e37]]
+    mapping = "[[table]]\nkeep_placeholders = true\n"
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows), mapping=mapping))
+    assert low(table, "Supply current")[0] == 999 and list(rejected(table)) == ["B3"]
+    assert "keep_placeholders = true" in table.mapping
+
+
+def test_a_placeholder_among_conditions_and_uncertainties_is_rejected(tmp_path: Path) -> None:
+    rows = [["f (GHz)", "Gain (dB)", "U (dB, k=2)"], [27.5, 20, 0.4], [-999, 20, 0.4], [30, 20, 9999]]
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows)))
+    assert set(rejected(table)) == {"A3", "C4"}

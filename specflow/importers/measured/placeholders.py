@@ -1,0 +1,79 @@
+"""Numbers that instruments and their programs write where there is no reading.
+
+9.9E37 and 9.91E37 are those of SCPI-1999, volume 1, 7.2.1. The others are common practice, no source: the smallest and
+the greatest whole number of 16 and 32 bits, bare or scaled (-2147.48), and runs of nines (-999, 999.9, 9999).
+"""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.importers.measured.cells import Rows
+from specflow.importers.measured.rejects import Rejects
+
+NO_NUMBER = 9.9e37
+_NO_NUMBER_REASON = "a placeholder of the instrument, no number"
+_REASON = (
+    "written by instruments where there is no reading, and far from the other readings of the column "
+    "(keep_placeholders = true in a mapping reads it)"
+)
+_NEAR = 0.5
+_WHOLE = (2147483648, 2147483647)
+_SCALES = (0, 3, 4, 5, 6, 7)
+_DECIMALS = (2, 3, 4, 6)
+
+
+def _marks() -> frozenset[float]:
+    scaled = {
+        round(whole / 10**scale, digits) for whole in _WHOLE for scale in _SCALES for digits in _DECIMALS
+    }
+    nines = {float(f"{'9' * count}{rest}") for count in range(3, 8) for rest in ("", ".9", ".99", ".999")}
+    return frozenset(one for one in (*scaled, *nines, 32768.0, 32767.0) if one >= 999)
+
+
+_MARKS = np.array(sorted(_marks()))
+
+
+def reject_placeholders(low: NDArray[np.float64], column: int, rows: Rows, rejects: Rejects) -> None:
+    """Reject the placeholders among plain numbers, and put NaN in their place.
+
+    One that has a reading of its sign within half of its size beside it (998 mA, 999 mA) is a reading; where the
+    mapping keeps placeholders all are, but for those of SCPI.
+    """
+    with np.errstate(invalid="ignore"):
+        size = np.abs(low)
+        if not (size >= _MARKS[0]).any():
+            return
+        _reject(low, size >= NO_NUMBER, column, rows, rejects, _NO_NUMBER_REASON)
+    if not rejects.keep_placeholders:
+        _reject(low, _alone(low), column, rows, rejects, _REASON)
+
+
+def _alone(low: NDArray[np.float64]) -> NDArray[np.bool_]:
+    """Which numbers are marks without a reading near."""
+    alone = np.zeros(len(low), bool)
+    known = low[np.isfinite(low)]
+    marks = [
+        one
+        for one in (*_MARKS.tolist(), *(-_MARKS).tolist())
+        if known.size and known.min() <= one <= known.max()
+    ]
+    present = [one for one in marks if (known == one).any()]
+    if not present:
+        return alone
+    readings = known[~np.isin(known, present)]
+    for one in present:
+        same_sign = np.abs(readings[(readings > 0) == (one > 0)])
+        near = (same_sign >= abs(one) * _NEAR) & (same_sign <= abs(one) / _NEAR)
+        if not near.any():
+            alone |= low == one
+    return alone
+
+
+def _reject(
+    low: NDArray[np.float64], which: NDArray[np.bool_], column: int, rows: Rows, rejects: Rejects, reason: str
+) -> None:
+    for place in np.flatnonzero(which).tolist():
+        rejects.add(int(rows[place]), column, float(low[place]), reason)
+    low[which] = np.nan
