@@ -13,6 +13,7 @@ from specflow.units import Unit, parse_unit
 _BRACKET = re.compile(r"\(([^()]*)\)|\[([^\[\]]*)\]|\{([^{}]*)\}")
 _FACTOR = r"k\s*=\s*(?:[0-9]+(?:[.,][0-9]+)?)"
 _COVERAGE = re.compile(rf"[(\[]\s*{_FACTOR}\s*[)\]]|[,;]?\s*\b{_FACTOR}", re.IGNORECASE)
+_PLUS_MINUS = re.compile(r"^(?:±|\+/-)\s*(?=\w)")
 _PLACE = re.compile(r"\s*@\s*(?P<place>.+)$")
 _TAIL = re.compile(r"^(?P<name>.*\S)\s+(?P<unit>°\s?[CFK]|[^\s\w]*d[Bb]\S*|\S*Hz|\S*[WVA]|%|deg\w*|K|ppm)$")
 _WORDS_NOT_UNITS = frozenset(
@@ -56,9 +57,7 @@ class HeaderText:
 def read_header(text: str) -> HeaderText:
     """Take a header apart: "Gain @ antenna face (dB)", "EIRP / dBm", "f, GHz", "U (dB), k=2", "Temp °C"."""
     whole = " ".join(text.split())
-    coverage = _COVERAGE.search(whole)
-    rest = _COVERAGE.sub(" ", whole).strip() if coverage else whole
-    k = float(re.sub(r"[^0-9.,]", "", coverage[0].split("=")[1]).replace(",", ".")) if coverage else None
+    rest, k = without_coverage(whole)
     rest, unit, odd, bracketed = _without_brackets(rest)
     place = _PLACE.search(rest)
     found = place["place"].strip() if place else ""
@@ -66,8 +65,17 @@ def read_header(text: str) -> HeaderText:
     if not unit and found:
         found, unit = _without_tail(found) if not _starts_with_number(found) else (found, "")
     if not unit and not odd:
-        rest, unit = _without_tail(rest)
+        rest, unit = _without_tail(_PLUS_MINUS.sub("± ", rest))
     return HeaderText(whole, rest.strip(" ,;:/-."), unit, odd, found, k, bracketed)
+
+
+def without_coverage(text: str) -> tuple[str, float | None]:
+    """Cut the coverage factor off: "dB (k=2)", "dB, k = 1,96"; None where there is none."""
+    coverage = _COVERAGE.search(text)
+    if coverage is None:
+        return text, None
+    k = float(re.sub(r"[^0-9.,]", "", coverage[0].split("=")[1]).replace(",", "."))
+    return _COVERAGE.sub(" ", text).strip(), k
 
 
 def known_unit(text: str) -> Unit | None:

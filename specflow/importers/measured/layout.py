@@ -14,7 +14,10 @@ from specflow.importers.measured.tables import FoundTable
 
 def layout_key(table: FoundTable) -> str:
     """Return the key of a table's layout."""
-    headers = [f"{header_key(header.text)}|{header_key(header.unit)}" for header in table.headers]
+    headers = [
+        f"{header_key(header.text)}|{header_key(header.unit)}" + (f"|k={header.k:g}" if header.k else "")
+        for header in table.headers
+    ]
     return "L-" + digest([sheet_pattern(table), headers])[:16]
 
 

@@ -16,7 +16,11 @@ from specflow.parameters.headers import tokens
 
 def uncertainty_column(heading: Heading, words: UncertaintyWords, unit: FoundUnit) -> ColumnMeaning:
     """Read a column of uncertainties; an expanded one without its coverage factor is a question."""
-    k = heading.hints.k or heading.parts.k or (1.0 if words.is_standard else None)
+    written, below = heading.parts.k, heading.header.k
+    if not heading.hints.k and written and below and written != below:
+        what = f"the header says k = {written:g}, the units row k = {below:g}"
+        return heading.ask(what, "correct one of them, or k = 2 (or what it is) for the column in a mapping")
+    k = heading.hints.k or written or below or (1.0 if words.is_standard else None)
     if not unit.unit:
         return heading.ask_unit(unit.problem or "an uncertainty without a unit", "dB")
     if k is None:

@@ -10,12 +10,12 @@ from __future__ import annotations
 
 import re
 from collections.abc import Callable, Iterator
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 
 from specflow.importers.measured.cells import ColumnCells, Flags, Rows, read_column
-from specflow.importers.measured.header_text import header_key, known_unit
+from specflow.importers.measured.header_text import header_key, known_unit, without_coverage
 from specflow.importers.measured.statements import is_reading, statement_rows, statement_text
 from specflow.importers.readers import Grid, Value, address, is_blank, looks_numeric
 
@@ -32,13 +32,17 @@ _NO_UNIT = ("", "-", "—", "–", "n/a")
 
 @dataclass(frozen=True, slots=True)
 class HeaderCell:
-    """One header: its column, its text as written, and the unit of a units row below it ("" without one)."""
+    """One header: its column, its text as written, and the unit of a units row below it ("" without one).
+
+    ``k`` is a coverage factor that stands beside that unit.
+    """
 
     column: int
     row: int
     text: str
     unit: str = ""
     unit_row: int | None = None
+    k: float | None = None
 
     @property
     def cell(self) -> str:
@@ -209,19 +213,27 @@ def _units_row(grid: Grid, row: int, headers: tuple[HeaderCell, ...]) -> int | N
     texts = [value.strip() if isinstance(value, str) else None for value in values]
     if any(text is None for text in texts):
         return None
-    units = [_bare(text) for text in texts if text is not None and text not in _NO_UNIT]
+    units = [_unit_and_k(text)[0] for text in texts if text is not None and text not in _NO_UNIT]
     if units and all(known_unit(unit) is not None and not looks_numeric(unit) for unit in units):
         return row
     return None
 
 
 def _with_unit(grid: Grid, header: HeaderCell, row: int) -> HeaderCell:
-    text = _bare(str(grid.value(row, header.column)).strip())
-    return header if text in _NO_UNIT else HeaderCell(header.column, header.row, header.text, text, row)
+    text, k = _unit_and_k(str(grid.value(row, header.column)).strip())
+    return header if text in _NO_UNIT else replace(header, unit=text, unit_row=row, k=k)
+
+
+def _unit_and_k(text: str) -> tuple[str, float | None]:
+    """The parts of a cell of a units row: "[GHz]", "dB (k=2)", "(± dB, k=2)"."""
+    unit, k = without_coverage(_bare(text))
+    return _bare(unit.removeprefix("±").removeprefix("+/-").strip()), k
 
 
 def _bare(text: str) -> str:
-    return text[1:-1].strip() if text[:1] + text[-1:] in ("[]", "()") else text
+    inside = text[1:-1]
+    is_bracketed = text[:1] + text[-1:] in ("[]", "()") and not set("[]()") & set(inside)
+    return inside.strip() if is_bracketed else text
 
 
 class _Body:

@@ -37,6 +37,7 @@ def u_of(table: MeasuredTable, name: str) -> list[float] | None:
         ("Gain uncertainty (dB), k=2", 0.8, 0.4),
         ("Uncertainty of gain (dB), k=2", 0.8, 0.4),
         ("± (dB), k=2", 0.8, 0.4),
+        ("±dB (k=2)", 0.8, 0.4),
         ("Meas. unc. (dB, k=2)", 0.8, 0.4),
     ],
 )
@@ -130,3 +131,28 @@ def test_the_register_needs_the_frequency_that_its_line_speaks_of(tmp_path: Path
     path = book(tmp_path / "a.xlsx", [["Vdd (V)", "Gain (dB)"], [5, 20]])
     register = line("U-1", 0.2, frequency_from_hz=27e9)
     assert u_of(taken(one_table(path, register, stated=SAID | {"set_up": "Bench 3"})), "Gain") is None
+
+
+@pytest.mark.parametrize(
+    "unit", ["dB (k=2)", "dB, k = 2", "[dB] (k=2)", "(dB, k=2)", "± dB (k=2)", "±dB k=2"]
+)
+def test_the_coverage_factor_may_stand_in_the_units_row(tmp_path: Path, unit: str) -> None:
+    rows = [["Frequency", "Gain", "Uncertainty"], ["GHz", "dB", unit], [27.5, 20, 0.8]]
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows)))
+    assert u_of(table, "Gain") == [0.4]
+    assert table.document is not None and table.document.values[0].coverage_factor == 2
+
+
+def test_two_coverage_factors_are_asked_about(tmp_path: Path) -> None:
+    rows = [["Frequency", "Gain", "U (k=1)"], ["GHz", "dB", "dB (k=2)"], [27.5, 20, 0.8]]
+    assert "the header says k = 1, the units row k = 2" in questions(
+        one_table(book(tmp_path / "a.xlsx", rows))
+    )
+
+
+def test_layouts_with_other_coverage_factors_are_other_layouts(tmp_path: Path) -> None:
+    keys = set()
+    for unit in ("dB (k=2)", "dB (k=3)", "dB"):
+        rows = [["Frequency", "Gain", "U"], ["GHz", "dB", unit], [27.5, 20, 0.8]]
+        keys.add(one_table(book(tmp_path / "a.xlsx", rows)).layout_key)
+    assert len(keys) == 3
