@@ -18,7 +18,6 @@ from specflow.limits import alternatives, rule_of
 from specflow.limits.conversion import same_unit_spelling
 from specflow.model.evidence import EvidenceTable
 from specflow.model.limit import Limit, Rule
-from specflow.model.parameter import QuantityIdentity
 from specflow.model.requirement import Requirement
 from specflow.model.verdict import Verdict
 from specflow.parameters import Dictionary
@@ -68,8 +67,8 @@ def _own(requirement: Requirement, limit: Limit) -> Member:
 
 def _other(requirement: Requirement, limit: Limit, name: str, dictionary: Dictionary) -> Member:
     known = dictionary.get(name) or dictionary.parameter_for_title(name)
-    quantity = QuantityIdentity(parameter=name if known is None else known.key)
-    return Member(limit, Wanted(quantity, limit.unit, any_identity=True))
+    quantity = requirement.quantity.model_copy(update={"parameter": name if known is None else known.key})
+    return Member(limit, Wanted(quantity, limit.unit, by_name=True))
 
 
 def put_together(

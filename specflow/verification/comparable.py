@@ -9,6 +9,7 @@ from __future__ import annotations
 
 import math
 from collections import deque
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -25,6 +26,8 @@ from specflow.verification.spectrum import WITHOUT_BANDWIDTH, recorded_bandwidth
 
 Floats = NDArray[np.float64]
 
+#: Kinds of mismatch that say the value is one of another quantity, not that it cannot be read.
+IDENTITY = frozenset({"plane", "statistic", "bandwidth", "polarisation"})
 _MOVES_WITH_GAIN = frozenset({Kind.LEVEL, Kind.LEVEL_DENSITY})
 
 
@@ -93,29 +96,30 @@ class Fit:
 class Wanted:
     """The quantity a limit is on, and its unit.
 
-    ``any_bandwidth``: the limit itself states its bandwidths, record by record. ``any_identity``: a limit on another
-    quantity by name, which says nothing about its plane or statistic.
+    ``any_bandwidth``: the limit itself states its bandwidths, record by record. ``by_name``: a limit on another
+    parameter than that of the requirement; the rest of ``quantity`` is the requirement's, and holds for the other
+    parameter as far as it means anything there.
     """
 
     quantity: QuantityIdentity
     unit: str
     any_bandwidth: bool = False
-    any_identity: bool = False
+    by_name: bool = False
 
     @property
     def key(self) -> tuple[object, ...]:
         """What makes two of them the same, quick to compare."""
         one = self.quantity
         identity = one.parameter, one.plane, one.statistic, one.bandwidth_hz, one.polarisation
-        return (*identity, self.unit, self.any_bandwidth, self.any_identity)
+        return (*identity, self.unit, self.any_bandwidth, self.by_name)
 
 
 def fit(
     table: EvidenceTable, column: ValueColumn, want: Wanted, block: Block | None, parameter: Parameter | None
 ) -> Fit | Mismatch:
     """Return how the values of a column are compared with a limit on what is wanted, or why they may not be."""
-    if want.any_identity:
-        want = replace(want, quantity=column.quantity)
+    if want.by_name:
+        want = replace(want, quantity=_inherited(want.quantity, column.quantity, parameter))
     found, wanted, unit = column.quantity, want.quantity, want.unit
     for part in ("statistic", "polarisation"):
         if _plain(getattr(found, part)) != _plain(getattr(wanted, part)):
@@ -142,6 +146,30 @@ def fit(
         moved.u_db,
         (*notes, *moved.notes, *scaled.notes),
     )
+
+
+def _inherited(
+    wanted: QuantityIdentity, found: QuantityIdentity, parameter: Parameter | None
+) -> QuantityIdentity:
+    """Return what is wanted of another parameter: plane, statistic and polarisation of the requirement.
+
+    A plane or statistic that the other parameter does not know (an output of an EIRP) is answered by any that it does
+    know; where the requirement states no plane, any will do, as an EIRP has its own. The reference bandwidth is that of
+    the record: a ratio of powers has none.
+    """
+    plane, statistic = wanted.plane, wanted.statistic
+    planes, statistics = ((), ()) if parameter is None else (parameter.planes, parameter.statistics)
+    if not plane or (not _knows(planes, plane) and _knows(planes, found.plane or plane)):
+        plane = found.plane
+    if statistic and not _knows(statistics, statistic):
+        statistic = found.statistic
+    return wanted.model_copy(
+        update={"plane": plane, "statistic": statistic, "bandwidth_hz": found.bandwidth_hz}
+    )
+
+
+def _knows(known: Sequence[str], part: str) -> bool:
+    return not known or _plain(part) in map(_plain, known)
 
 
 @dataclass(frozen=True, slots=True)

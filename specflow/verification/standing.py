@@ -61,6 +61,12 @@ class RowStanding:
     reasons: tuple[str, ...] = ()
     replaced: tuple[Replacement, ...] = ()
 
+    def outdated(self, reason: str) -> RowStanding:
+        """Return the same rows, stale for a reason that concerns all of them."""
+        return RowStanding(
+            np.maximum(self.codes, np.int8(STALE)), False, (*self.reasons, reason), self.replaced
+        )
+
 
 @dataclass(frozen=True)
 class StandingRegister:

@@ -14,7 +14,7 @@ from specflow.model.evidence import EvidenceTable
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Snapshot
 from specflow.model.verdict import Mismatch
-from specflow.verification.records import Records
+from specflow.verification.records import Records, Source
 from specflow.verification.workspace import Workspace
 
 
@@ -85,4 +85,26 @@ def _reason(table: EvidenceTable, asked: set[tuple[str, str]], workspace: Worksp
     names = {column.quantity.parameter for column in table.values}
     if not any((code_key(table.block), code_key(name)) in asked for name in names):
         return f"no requirement on {table.block} asks for {', '.join(sorted(names))}"
-    return "no reading can be compared at a required point of any requirement; see their mismatches"
+    words = "no reading can be compared at a required point of any requirement; see their mismatches"
+    missed = _missed_elsewhere(table, workspace)
+    if missed:
+        words += f". Some of it would fail {', '.join(missed)}, were it referred to what is required there"
+    return words
+
+
+def _missed_elsewhere(table: EvidenceTable, workspace: Workspace) -> list[str]:
+    """Return the requirements that a table fails under another plane, statistic, bandwidth or polarisation.
+
+    A requirement whose plane was changed must not lose sight of a fail that stands under the old one.
+    """
+    asking = workspace.snapshot.requirements_of_block.get(code_key(table.block), ())
+    sources = [Source(table, column, place) for place, column in enumerate(table.values)]
+    return [
+        requirement.id
+        for requirement in asking
+        if any(
+            code_key(source.column.quantity.parameter) == code_key(requirement.quantity.parameter)
+            and workspace.misses_elsewhere(source, requirement)
+            for source in sources
+        )
+    ]

@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from collections import defaultdict
 from collections.abc import Callable, Iterable, Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from datetime import date
 from functools import cached_property
 
@@ -20,6 +20,7 @@ from specflow.conditions.maps import unmap_columns
 from specflow.conditions.match import Matching, match
 from specflow.conditions.points import Points
 from specflow.errors import ConditionsError, UnitError
+from specflow.limits import LimitContext, evaluate_limit
 from specflow.model.base import code_key
 from specflow.model.block import Block, HardwareType, Item
 from specflow.model.columns import Columns, TextColumn
@@ -31,9 +32,11 @@ from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Snapshot
 from specflow.model.verdict import Mismatch
 from specflow.parameters import Dictionary
+from specflow.statistics.decision import AcceptanceInterval
 from specflow.units import Quantity, parse_unit
 from specflow.verification.changed import changes_below
-from specflow.verification.comparable import Fit, Wanted, fit
+from specflow.verification.comparable import IDENTITY, Fit, Wanted, fit
+from specflow.verification.limit_inputs import is_plain
 from specflow.verification.map_choice import MapChoice
 from specflow.verification.records import Held, Records, Source, gather, no_records
 from specflow.verification.residuals import Residuals
@@ -65,7 +68,7 @@ class Workspace:
     _matchings: dict[tuple[int, int], tuple[Points, Columns, Matched]] = field(default_factory=dict)
     _stacks: dict[tuple[str, ...], Columns] = field(default_factory=dict)
     _mapped: dict[tuple[int, int], tuple[ConditionMap, Columns, Columns]] = field(default_factory=dict)
-    _records: dict[tuple[str, tuple[object, ...]], Records] = field(default_factory=dict)
+    _records: dict[tuple[str, tuple[object, ...], str], Records] = field(default_factory=dict)
     _items: dict[str, tuple[NDArray[np.intp], tuple[str, ...]]] = field(default_factory=dict)
     _standings: dict[tuple[str, str], RowStanding] = field(default_factory=dict)
     _columns: dict[str, EvidenceColumns] = field(default_factory=dict)
@@ -184,35 +187,70 @@ class Workspace:
         return MapChoice.of(self.snapshot)
 
     def records(self, requirement: Requirement, want: Wanted) -> Records:
-        """Return the readings of a quantity of the requirement's block; what may not be compared apart."""
-        key = code_key(requirement.block), want.key
+        """Return the readings of a quantity of the requirement's block; what may not be compared apart.
+
+        Tables recorded for this requirement before its plane, statistic, bandwidth or polarisation was changed are
+        among them, as stale: their fails stay open until they are re-verified.
+        """
+        sources = self.sources.get((code_key(requirement.block), code_key(want.quantity.parameter)), ())
+        own = code_key(requirement.id) if requirement.revision > 1 else ""
+        if not any(own and code_key(source.table.requirement or "") == own for source in sources):
+            own = ""
+        key = code_key(requirement.block), want.key, own
         found = self._records.get(key)
         if found is None:
-            found = self._records[key] = self._gathered(requirement.block, want)
+            found = self._records[key] = self._gathered(requirement.block, want, sources, own)
         return found
 
-    def _gathered(self, block_id: str, want: Wanted) -> Records:
-        block = self.snapshot.find(Block, block_id)
-        parameter = self.dictionary.get(want.quantity.parameter)
-        fitting: list[tuple[Source, Fit]] = []
+    def _gathered(self, block_id: str, want: Wanted, sources: Sequence[Source], own: str) -> Records:
+        held: list[Held] = []
         mismatches: list[Mismatch] = []
-        for source in self.sources.get((code_key(block_id), code_key(want.quantity.parameter)), ()):
-            found = fit(source.table, source.column, want, block, parameter)
-            if isinstance(found, Mismatch):
-                mismatches.append(found)
-            else:
-                fitting.append((source, found))
-        if not fitting:
+        for source in sources:
+            found = self._fit(source, want, block_id)
+            if not isinstance(found, Mismatch):
+                held.append(self._held(source, found))
+                continue
+            mismatches.append(found)
+            if own and code_key(source.table.requirement or "") == own and found.kind in IDENTITY:
+                before = self._fit(source, replace(want, quantity=source.column.quantity), block_id)
+                if not isinstance(before, Mismatch):
+                    reason = f"{source.table.id}: recorded for {source.table.requirement}, but {found.what}"
+                    held.append(self._held(source, before, reason))
+        if not held:
             return no_records(mismatches)
-        held = [self._held(source, how) for source, how in fitting]
-        return gather(held, self._stack([source.table.id for source, _ in fitting]), mismatches)
+        return gather(held, self._stack([one.source.table.id for one in held]), mismatches)
 
-    def _held(self, source: Source, how: Fit) -> Held:
+    def _fit(self, source: Source, want: Wanted, block_id: str) -> Fit | Mismatch:
+        block, parameter = (
+            self.snapshot.find(Block, block_id),
+            self.dictionary.get(want.quantity.parameter),
+        )
+        return fit(source.table, source.column, want, block, parameter)
+
+    def _held(self, source: Source, how: Fit, outdated: str = "") -> Held:
         columns = self.columns(source.table.id)
         codes, items = self._item_codes(source.table.id, columns.items)
         standing = self._standing(source, columns)
         arrays = self.residuals.bounded(source, columns)
+        if outdated:
+            standing = standing.outdated(outdated)
         return Held(source, how, arrays, columns.conditions, codes, items, standing)
+
+    def misses_elsewhere(self, source: Source, requirement: Requirement) -> bool:
+        """Whether a source fails a plain limit that it may not be held against because its identity differs."""
+        limit, want = requirement.limit, Wanted(requirement.quantity, requirement.limit.unit)
+        found = self._fit(source, want, requirement.block)
+        if not isinstance(found, Mismatch) or found.kind not in IDENTITY or not is_plain(limit):
+            return False
+        how = self._fit(source, replace(want, quantity=source.column.quantity), requirement.block)
+        if isinstance(how, Mismatch):
+            return False
+        try:
+            values = how.apply(self.columns(source.table.id).values[source.column.name])
+        except UnitError:
+            return False
+        bounds = evaluate_limit(limit, LimitContext(Columns(1)))
+        return bool(AcceptanceInterval(bounds.lower, bounds.upper).missed(values.low, values.high).any())
 
     @cached_property
     def residuals(self) -> Residuals:
