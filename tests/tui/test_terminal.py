@@ -81,6 +81,7 @@ def test_browse_in_a_terminal(terminal: Terminal, tmp_path: Path) -> None:
     screen = terminal.wait(lambda text: "PA-1 · failing" in text)
     assert "at least 30 dBm" in screen and "8 of 9 proved, 4 failing, 1 missing" in screen
     terminal.press("g")
+    terminal.wait(lambda text: "x open point" in text)
     terminal.press("g")
     screen = terminal.wait(lambda text: "[×]" in text and "pa_bench.xlsx · Bench 1 · D3" in text)
     assert "item PA-A: 4 of 9 proved" in screen and "fail · 30.61 dBm" in screen

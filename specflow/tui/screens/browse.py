@@ -174,7 +174,7 @@ class BrowseScreen(Screen[None]):
             self.notify("There is no proof grid on this card.")
             return
         here = self.card_view.focused_grid
-        grids[0 if here is None else (here + 1) % len(grids)].focus()
+        self.card_view.go_to(grids[0 if here is None else (here + 1) % len(grids)])
 
     def action_tree(self) -> None:
         """Go back to the tree; from there, drop the filters."""

@@ -80,7 +80,15 @@ class CardView(VerticalScroll):
         grids = list(self.query(ProofGridView))
         if kept is not None and grids:
             grids[min(kept, len(grids) - 1)].focus(scroll_visible=False)
-        self.call_after_refresh(self.scroll_to, y=self._place, animate=False)
+        if self._place:
+            self.call_after_refresh(self.scroll_to, y=self._place, animate=False)
+        else:  # at once: later it would undo where a key has gone meanwhile
+            self.scroll_to(y=0, animate=False, immediate=True)
+
+    def go_to(self, grid: ProofGridView) -> None:
+        """Give a grid the keys and bring it into view, at once: of two quick keys the second has to win."""
+        grid.focus(scroll_visible=False)
+        self.scroll_to_widget(grid, animate=False, immediate=True)
 
     @property
     def focused_grid(self) -> int | None:
