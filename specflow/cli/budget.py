@@ -11,6 +11,9 @@ from specflow.cli.options import JsonOption, ProjectOption, open_store
 
 if TYPE_CHECKING:
     from specflow.workflows.budget_outcome import HowToCompute
+    from specflow.workflows.show_budget import ShownBudget
+
+PICTURE_WIDTH = 96
 
 CodeArgument = Annotated[
     str,
@@ -66,10 +69,26 @@ def budget(
     with open_store(project, read_only=True) as store, progress(f"budget {code}") as step:
         shown = show_budget(store, code, at=at, how=how, step=step)
     if as_json:
-        put_json({"at": shown.outcome.places[shown.place], **report_as_json(shown.report)})
+        pictures = [picture.model_dump(mode="json") for picture in shown.pictures]
+        told = report_as_json(shown.report)
+        put_json({"at": shown.outcome.places[shown.place], **told, "pictures": pictures})
         return
     put(f"{shown.report.title}\n{shown.report.subtitle}\n")
-    put_report(shown.report)
+    put_report(shown.report.model_copy(update={"facts": ()}))
+    _put_pictures(shown)
+    for name, value in shown.report.facts:
+        put(f"{name}: {value}")
+
+
+def _put_pictures(shown: ShownBudget) -> None:
+    """Draw the pictures in plain text, as wide as the terminal up to a width that the eye still follows."""
+    from shutil import get_terminal_size
+
+    from specflow.reports.picture_text import picture_lines
+
+    width = min(get_terminal_size((PICTURE_WIDTH, 24)).columns, PICTURE_WIDTH)
+    for picture in shown.pictures:
+        put("\n".join(picture_lines(picture, width)) + "\n")
 
 
 def _how(method: list[str] | None, trials: int, seed: int) -> HowToCompute:

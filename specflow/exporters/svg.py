@@ -19,6 +19,7 @@ GOOD, BAD = "#7fa99b", "#c0583c"
 WIDTH = 860
 _FONT = 'font-family="system-ui, sans-serif" font-size="12"'
 _CHARACTER = 6.4  # mean width in px of a character at that size
+_HALO = ' stroke="#fff" stroke-width="3" paint-order="stroke"'  # text that crosses a line stays readable
 _Place = Callable[[int], float]
 _Value = Callable[[float], float]
 
@@ -61,7 +62,7 @@ def ticks(low: float, high: float, most: int = 8) -> list[float]:
 # Levels
 
 
-_TOP, _LEFT, _RIGHT, _PLOT = 34, 58, 30, 250
+_TOP, _LEFT, _RIGHT, _PLOT = 40, 58, 44, 250
 
 
 def _levels(picture: LevelDiagram) -> tuple[int, list[str]]:
@@ -133,10 +134,24 @@ def _series(one: Series, x: _Place, y: _Value) -> Iterator[str]:
             yield _stroke(x(place), y(value), x(after), y(next_value), COLOURS[one.look], _dashes(one))
     for place, value in known:
         yield _mark(one, x(place), y(value))
-        lower = one.look == "noise"
-        yield _text(
-            x(place) + 6, y(value) + (16 if lower else -7), one.texts[place], "start", COLOURS[one.look]
-        )
+        yield _label(one, place, x, y)
+
+
+def _label(one: Series, place: int, x: _Place, y: _Value) -> str:
+    """Write a value on the side of its line that the line does not take."""
+    value = one.values[place] or 0.0
+    before = one.values[place - 1] if place else None
+    after = one.values[place + 1] if place + 1 < len(one.values) else None
+    rises = (after if after is not None else value) - (before if before is not None else value)
+    at, height, colour = x(place), y(value), COLOURS[one.look]
+    below = one.look == "noise"
+    anchor = "end" if (rises > 0) != below else "start"
+    if before is None and place == 0:
+        anchor = "start"
+    if after is None and place == len(one.values) - 1:
+        anchor = "end"
+    aside = -6 if anchor == "end" else 6
+    return _text(at + aside, height + (17 if below else -8), one.texts[place], anchor, colour, _HALO)
 
 
 # Contributions

@@ -58,7 +58,7 @@ class Bar(Document):
 
 
 class ContributionBars(Document):
-    """Who makes how much of a quantity, in the order of the chain."""
+    """Who makes how much of a quantity, or moves it how far, in the order of the chain."""
 
     kind: Literal["contributions"] = "contributions"
     title: str

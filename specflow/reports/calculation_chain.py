@@ -24,7 +24,7 @@ BOLTZMANN = 1.380649e-23
 T0 = 290.0
 """K, the reference temperature of noise figures."""
 _PORTS = ("iip3", "iip2", "ip1db")
-_LEFT = 3  # columns in front of the figures: number, block, elements
+_LEFT = 4  # columns in front of the figures: number, block, elements, physical temperature
 
 
 class ChainTable:
@@ -39,6 +39,7 @@ class ChainTable:
         self.lines: list[tuple[LineOutcome, Term]] = []
         self.figures: dict[str, list[Term | None]] = {}
         self.fixed: dict[str, Term] = {}
+        self.temperatures: dict[int, Term] = {}
         self._given()
         self._lines()
         self._chain()
@@ -124,13 +125,14 @@ class ChainTable:
         columns = self._columns(figures)
         for column, (title, _) in enumerate(columns, start=_LEFT):
             self.grid.text(start, column, title, CellLook.HEADER)
-        for column, title in enumerate(("#", "Block", "Elements N")):
+        for column, title in enumerate(("#", "Block", "Elements N", "Physical temperature [K]")):
             self.grid.text(start, column, title, CellLook.HEADER)
         for row, position in enumerate(self.outcome.positions):
             at = start + 1 + row
             self.grid.number(at, 0, position.order, CellLook.PLAIN, "0")
             self.grid.text(at, 1, position_words(self.outcome, row))
             count = self.grid.number(at, 2, position.count, CellLook.INPUT, "0")
+            self._temperature(at, row)
             for column, (_, make) in enumerate(columns, start=_LEFT):
                 term = make(row, count)
                 if term is not None:
@@ -212,16 +214,16 @@ class ChainTable:
     def _noise_of_loss(self, row: int) -> Term:
         if not self.outcome.positions[row].passive:
             return Term("0", 0.0)
-        gain, kelvin = self.own("gain", row), float(self.outcome.temperature_k[row, self.place])
-        loss = 10.0 ** (-gain.value / 10.0)
-        part = "1" if math.isnan(kelvin) else f"{plain(kelvin)}/{self.fixed['t0'].text}"
-        value = 1.0 + (loss - 1.0) * (1.0 if math.isnan(kelvin) else kelvin / T0)
-        return Term(f"10*LOG10(1+(10^(-{gain.text}/10)-1)*{part})", 10.0 * math.log10(value))
+        gain, kelvin, t0 = self.own("gain", row), self.temperatures[row], self.fixed["t0"]
+        value = 1.0 + (10.0 ** (-gain.value / 10.0) - 1.0) * kelvin.value / T0
+        text = f"10*LOG10(1+(10^(-{gain.text}/10)-1)*{kelvin.text}/{t0.text})"
+        return Term(text, 10.0 * math.log10(value))
 
-    def _own(self, key: str, row: int) -> Term:
-        found = self.figures[key][row]
-        assert found is not None  # its column comes before
-        return found
+    def _temperature(self, at: int, row: int) -> None:
+        """Put the physical temperature of a position that makes the noise of its loss; 290 K where none is stated."""
+        if self.outcome.positions[row].passive and "t0" in self.fixed:
+            kelvin = float(self.outcome.temperature_k[row, self.place])
+            self.temperatures[row] = self.grid.number(at, 3, T0 if math.isnan(kelvin) else kelvin)
 
     def _known(self, key: str, row: int) -> list[Term]:
         return [term for term in self.figures[key][: row + 1] if term is not None]

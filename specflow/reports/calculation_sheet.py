@@ -41,7 +41,7 @@ class _Sheet:
         self._results()
         return FormulaSheet(
             title=f"Budget {self.outcome.budget.id}",
-            widths=(7, 30, 22, *(14 for _ in range(24))),
+            widths=(7, 30, 28, *(14 for _ in range(24))),
             rows=tuple(tuple(row) for row in self.grid.rows),
         )
 

@@ -24,6 +24,7 @@ def budget_pictures(outcome: BudgetOutcome, place: int, named: Named) -> tuple[P
     return (
         *_levels(outcome, place),
         *(_bars(outcome, one, place, named) for one in outcome.quantities if one.shares is not None),
+        *(_reach(outcome, one, place, named) for one in outcome.quantities if _moves(outcome, one, place)),
         *(_distribution(outcome, one, named) for one in outcome.chances if one.counts.sum() > 0),
     )
 
@@ -91,6 +92,41 @@ def _bars(outcome: BudgetOutcome, one: QuantityOutcome, place: int, named: Named
         title=f"{outcome.budget.id}: who makes how much of {named(one.parameter)} at {outcome.places[place]}",
         words=f"Parts of {one.shared}. The largest is {largest.name} with {largest.text}.",
         bars=tuple(bars),
+    )
+
+
+def _reaches(outcome: BudgetOutcome, one: QuantityOutcome, place: int) -> list[tuple[str, float]]:
+    """Return how far each line that has a tolerance takes the quantity, larger side, all elements alike."""
+    return [
+        (
+            f"{position_words(outcome, line.row)} {line.line.parameter}",
+            abs(float(one.slopes[at, place])) * max(line.line.tolerance.minus, line.line.tolerance.plus),
+        )
+        for at, line in enumerate(outcome.lines)
+        if line.line.tolerance is not None
+    ]
+
+
+def _moves(outcome: BudgetOutcome, one: QuantityOutcome, place: int) -> bool:
+    return any(reach > 1e-9 for _, reach in _reaches(outcome, one, place))
+
+
+def _reach(outcome: BudgetOutcome, one: QuantityOutcome, place: int, named: Named) -> ContributionBars:
+    reaches = [
+        (name.replace("_", " "), reach) for name, reach in _reaches(outcome, one, place) if reach > 1e-9
+    ]
+    whole = sum(reach for _, reach in reaches)
+    unit = one.served[0].margin_unit if one.served else one.unit
+    largest = max(reaches, key=lambda pair: pair[1])
+    return ContributionBars(
+        title=f"{outcome.budget.id}: how far the tolerance of each line takes {named(one.parameter)} "
+        f"at {outcome.places[place]}",
+        words=f"Slope times tolerance, the larger side. The largest is {largest[0]} with "
+        f"{with_unit(largest[1], unit)}.",
+        bars=tuple(
+            Bar(name=name, part=reach / whole, text=with_unit(float(f"{reach:.3g}"), unit))
+            for name, reach in reaches
+        ),
     )
 
 

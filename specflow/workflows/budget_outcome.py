@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -25,7 +25,7 @@ from specflow.budgets import (
     slopes_of,
     worst_case,
 )
-from specflow.budgets.figures import of_elements
+from specflow.budgets.figures import figures_of, of_elements
 from specflow.budgets.forms import (
     AS_IT_IS,
     CARRIER,
@@ -165,7 +165,7 @@ def _nominal(result: BudgetResult) -> BudgetOutcome:
         positions=result.positions,
         quantities=tuple(quantities),
         lines=tuple(_line(one, result) for one in result.chain.lines),
-        figures={name: _spread(array, result) for name, array in result.figures.arrays.items()},
+        figures={name: _spread(array, result) for name, array in _figures(result).items()},
         temperature_k=result.chain.temperature_k,
         levels=None
         if result.levels is None
@@ -175,6 +175,16 @@ def _nominal(result: BudgetResult) -> BudgetOutcome:
         worst=None if worst is None else (worst.requirement.id, worst.worst),
         notes=result.notes,
     )
+
+
+def _figures(result: BudgetResult) -> Mapping[str, Floats]:
+    """Return what the laws took, and the compression points of blocks where levels can be held against them."""
+    arrays = result.figures.arrays
+    states_compression = any(one.role.figure == "ip1db" for one in result.chain.lines)
+    if not states_compression or "ip1db" in arrays or result.levels is None:
+        return arrays
+    further = figures_of(result.chain, result.chain.nominal(), ("gain", "ip1db"))
+    return {**arrays, "ip1db": further["ip1db"]}
 
 
 def _spread(array: Floats, result: BudgetResult) -> Floats:

@@ -10,11 +10,13 @@ from specflow.errors import DocumentError, SpecflowError
 from specflow.model.base import code_key
 from specflow.model.budget import Budget
 from specflow.model.budget_outcome import BudgetOutcome, Way
+from specflow.model.picture import Picture
 from specflow.model.report import Report, ReportTable
 from specflow.model.snapshot import Snapshot
 from specflow.parameters import Dictionary
 from specflow.reports.budget import budget_report, titles
 from specflow.reports.budget_list import budgets_table
+from specflow.reports.pictures import budget_pictures
 from specflow.store import ProjectStore
 from specflow.workflows.budget_outcome import HowToCompute, Step, budget_outcome
 from specflow.workflows.evaluate_project import project_dictionary
@@ -25,11 +27,12 @@ NOMINAL_ONLY = HowToCompute(ways=())
 
 @dataclass(frozen=True, slots=True)
 class ShownBudget:
-    """A budget that was computed, the place it is looked at, and its tables."""
+    """A budget that was computed, the place it is looked at, its tables and its pictures."""
 
     outcome: BudgetOutcome
     place: int
     report: Report
+    pictures: tuple[Picture, ...]
 
 
 def _silent(text: str) -> None:
@@ -57,7 +60,13 @@ def show_budget(
     dictionary = project_dictionary(snapshot)
     outcome = budget_outcome(budget_named(snapshot, code), snapshot, dictionary, how, step=step)
     place = place_named(outcome, at) if at else outcome.place
-    return ShownBudget(outcome, place, budget_report(outcome, place, titles(dictionary)))
+    named = titles(dictionary)
+    return ShownBudget(
+        outcome,
+        place,
+        budget_report(outcome, place, named),
+        budget_pictures(outcome, place, named),
+    )
 
 
 def outcomes_of(
