@@ -110,7 +110,7 @@ def _drawn(tolerance: LineTolerance, random: np.random.Generator, size: int) -> 
             return _u_shaped(random.random(size), minus, plus)
         case Distribution.TRUNCATED_NORMAL:
             return _truncated(random.random(size), tolerance)
-    drawn = random.random(size)
+    drawn = random.random(size)  # faster than random.uniform
     drawn *= minus + plus
     drawn -= minus
     return drawn

@@ -128,10 +128,11 @@ def _referred(
         if read.role.figure != figure:
             continue
         row = read.row
-        level = read.figure(value) + 10.0 * math.log10(chain.positions[row].count)
+        array[row] = read.figure(value)
         if read.role.port == "output":
-            level = level - gain[row] + (1.0 if figure == "ip1db" else 0.0)
-        array[row] = level
+            array[row] -= gain[row] - (1.0 if figure == "ip1db" else 0.0)
+        if chain.positions[row].count > 1:
+            array[row] += 10.0 * math.log10(chain.positions[row].count)
     return array
 
 

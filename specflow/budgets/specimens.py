@@ -3,16 +3,20 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
+from typing import Literal
 
 import numpy as np
 from numpy.typing import NDArray
 
 from specflow.budgets.chain import Chain, ReadLine
 from specflow.budgets.figures import figures_of
+from specflow.budgets.forms import AS_IT_IS
 from specflow.budgets.outputs import Output
 from specflow.budgets.spread import moves
 from specflow.calculators.cascade import cascade_results
 from specflow.model.budget import Law
+from specflow.model.budget_line import Meaning
 from specflow.units import Converter, converter
 
 Floats = NDArray[np.float64]
@@ -24,6 +28,22 @@ _NO_ENDS: Ends = (-np.inf, np.inf)
 Block = tuple[slice, slice, dict[str, Floats], int]
 
 
+@dataclass(frozen=True, slots=True, eq=False)
+class Plan:
+    """How specimens of a chain are computed: what is asked for, which lines have ends, and the straight way if any."""
+
+    chain: Chain
+    outputs: tuple[Output, ...]
+    ends: dict[int, Ends]
+    straight: list[list[int]] | None
+
+
+def plan_of(chain: Chain, outputs: tuple[Output, ...]) -> Plan:
+    """Return the plan, made once for all trials."""
+    ends = physical_ends(chain)
+    return Plan(chain, outputs, ends, _straight(chain, outputs, ends))
+
+
 def physical_ends(chain: Chain) -> dict[int, Ends]:
     """Return the lines that move and cannot pass 0, with the lowest and highest value in their own unit.
 
@@ -31,8 +51,9 @@ def physical_ends(chain: Chain) -> dict[int, Ends]:
     """
     ends: dict[int, Ends] = {}
     for number, read in enumerate(chain.lines):
-        if not moves(read.line):
-            continue
+        tolerance = read.line.tolerance
+        if tolerance is None or not moves(read.line) or tolerance.meaning is Meaning.LIMITS:
+            continue  # limits that reach beyond 0 were refused
         zero = float(_back(read)(0.0))
         if read.role.figure in ("noise_figure", "source_k") or (
             read.role.figure == "gain" and read.role.form.rises < 0
@@ -50,22 +71,66 @@ def _back(read: ReadLine) -> Converter:
     return converter(read.convert.target, read.convert.source, log_factor=10)
 
 
-def results_of(
-    chain: Chain, outputs: Sequence[Output], deviations: Sequence[Floats | None], ends: dict[int, Ends]
-) -> Iterator[Block]:
+def results_of(plan: Plan, deviations: Sequence[Floats | None], size: int) -> Iterator[Block]:
     """Yield (places, trials, result (places, trials) by parameter, figures taken back to 0) block by block.
 
+    ``deviations`` are those of ``size`` trials, by line.
     The cut into blocks depends on the sizes alone.
     """
-    size = next((len(one) for one in deviations if one is not None), 1)
+    chain = plan.chain
     width = min(size, _WIDTH)
     depth = max(1, _WIDTH // width)
     for first in range(0, chain.size, depth):
         places = slice(first, min(first + depth, chain.size))
         for start in range(0, size, width):
             trials = slice(start, min(start + width, size))
-            values, clipped = _values(chain, deviations, ends, places, trials)
-            yield places, trials, _results(chain, outputs, values, places, trials), clipped
+            if plan.straight is not None:
+                yield places, trials, _straight_results(chain, plan.straight, deviations, places, trials), 0
+            else:
+                values, clipped = _values(chain, deviations, plan.ends, places, trials)
+                yield places, trials, _results(chain, plan.outputs, values, places, trials), clipped
+
+
+def _straight(chain: Chain, outputs: Sequence[Output], ends: dict[int, Ends]) -> list[list[int]] | None:
+    """Return the lines of the four fused figures by position, where each is stated as the law takes it.
+
+    Such chains, which are most, need no copy between drawing and the law. None where something has to be made first.
+    """
+    if chain.budget.law is not Law.CASCADE or {output.parameter for output in outputs} != set(_FUSED) or ends:
+        return None
+    rows: list[list[int]] = []
+    for figure in _FUSED:
+        lines = [chain.at(row, figure) for row in range(len(chain.positions))]
+        if any(len(numbers) != 1 for numbers in lines):
+            return None
+        rows.append([numbers[0] for numbers in lines])
+    reads = [chain.lines[number] for row in rows for number in row]
+    plain = all(
+        read.role.form is AS_IT_IS and read.convert.is_identity and read.role.port != "output"
+        for read in reads
+    )
+    return rows if plain and all(position.count == 1 for position in chain.positions) else None
+
+
+def _straight_results(
+    chain: Chain, rows: list[list[int]], deviations: Sequence[Floats | None], places: slice, trials: slice
+) -> dict[str, Floats]:
+    shape = (len(range(*places.indices(chain.size))), trials.stop - trials.start)
+    figures = np.empty((len(rows), len(chain.positions), *shape))
+    for table, numbers in zip(figures, rows, strict=True):
+        for into, number in zip(table, numbers, strict=True):
+            values, deviation = chain.lines[number].values, deviations[number]
+            nominal = (values if len(values) == 1 else values[places])[:, None]
+            np.add(nominal, 0.0 if deviation is None else deviation[None, trials], out=into)
+    return _fused(chain, *figures)
+
+
+def _fused(chain: Chain, gain: Floats, noise: Floats, iip3: Floats, ip1db: Floats) -> dict[str, Floats]:
+    law: Literal["coherent", "noncoherent"] = (
+        "coherent" if chain.budget.intermodulation == "coherent" else "noncoherent"
+    )
+    found = cascade_results(gain, noise, iip3, ip1db, law)
+    return {name: np.asarray(getattr(found, field), np.float64) for name, field in _FUSED.items()}
 
 
 def _values(
@@ -94,14 +159,7 @@ def _results(
     names = {output.parameter for output in outputs}
     results: dict[str, Floats] = {}
     if chain.budget.law is Law.CASCADE and set(_FUSED) <= needed and set(_FUSED) <= names:
-        fused = cascade_results(
-            figures["gain"],
-            figures["noise_figure"],
-            figures["iip3"],
-            figures["ip1db"],
-            "coherent" if chain.budget.intermodulation == "coherent" else "noncoherent",
-        )
-        results = {name: np.asarray(getattr(fused, field), np.float64) for name, field in _FUSED.items()}
+        results = _fused(chain, *(figures[name] for name in _FUSED))
     for output in outputs:
         if output.parameter not in results:
             results[output.parameter] = output.value(figures)

@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping
 from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
@@ -13,9 +14,8 @@ from specflow.budgets.chain import Chain, Overrides
 from specflow.budgets.draws import CHUNK, Draws, draws_of
 from specflow.budgets.evaluate import Prepared, nominal_result, prepare
 from specflow.budgets.margins import Bar
-from specflow.budgets.outputs import Output
 from specflow.budgets.result import BudgetResult
-from specflow.budgets.specimens import physical_ends, results_of
+from specflow.budgets.specimens import plan_of, results_of
 from specflow.budgets.spread import check_bounds
 from specflow.errors import CalculationError
 from specflow.model.base import code_key
@@ -27,8 +27,8 @@ from specflow.parameters import Dictionary
 Floats = NDArray[np.float64]
 Margins = NDArray[np.float32]
 MOST_TRIALS = 100_000_000
-_AT_ONCE = 4
-"""Worst margins kept of a trial, 4 bytes each; a budget of more requirements is drawn again for the others."""
+#: The parts of all specimens at which the worst margin is told.
+QUANTILES = (0.001, 0.01, 0.05, 0.1, 0.5, 0.9, 0.95, 0.99, 0.999)
 _BINS = 60
 _CONFIDENCE = 0.95
 _BLOCK = 4 * CHUNK
@@ -52,22 +52,54 @@ class Probability:
         )
 
 
-@dataclass(frozen=True, slots=True, eq=False)
+@dataclass(frozen=True, eq=False)
 class ServedChance:
     """One requirement over all trials.
 
     ``probability`` (n,) that a specimen meets the limit at each place, NaN where nothing is required; ``joint``: that
-    it meets it at all places. ``quantiles`` are those of the specimen's worst margin, in ``margin_unit``: the margin
-    that the named part of all specimens falls short of. ``histogram`` counts worst margins between ``edges``.
+    it meets it at all places. ``worst`` float32 (trials,) is the worst margin of each specimen in ``margin_unit``, +inf
+    where the limit is not known anywhere: 4 bytes a trial, all that is kept of it.
     """
 
     requirement: Requirement
     margin_unit: str
     probability: Floats
     joint: Probability
-    quantiles: dict[float, float]
-    edges: Floats
-    histogram: NDArray[np.int64]
+    worst: Margins
+
+    def quantile(self, part: float) -> float:
+        """Return the worst margin that ``part`` of all specimens fall short of, NaN where none is known."""
+        return float(np.quantile(self._known, part)) if len(self._known) else float("nan")
+
+    @cached_property
+    def quantiles(self) -> Mapping[float, float]:
+        """The worst margins at the parts ``QUANTILES``."""
+        if not len(self._known):
+            return dict.fromkeys(QUANTILES, float("nan"))
+        values = np.quantile(self._known, QUANTILES)
+        return {part: float(value) for part, value in zip(QUANTILES, values, strict=True)}
+
+    @property
+    def edges(self) -> Floats:
+        """The ends of the bins of ``histogram``, in ``margin_unit``."""
+        return self._bins[1]
+
+    @property
+    def histogram(self) -> NDArray[np.int64]:
+        """How many specimens have their worst margin in each bin between ``edges``."""
+        return self._bins[0]
+
+    @cached_property
+    def _known(self) -> Margins:
+        finite = np.isfinite(self.worst)
+        return self.worst if finite.all() else self.worst[finite]
+
+    @cached_property
+    def _bins(self) -> tuple[NDArray[np.int64], Floats]:
+        if not len(self._known):
+            return np.zeros(1, np.int64), np.zeros(2)
+        counts, ends = np.histogram(self._known, _BINS)
+        return counts.astype(np.int64), ends.astype(np.float64)
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -133,17 +165,7 @@ def monte_carlo(
     check_bounds(prepared.chain)
     draws = draws_of(prepared.chain, seed)
     run = _Run(prepared, draws, trials, block, threads)
-    groups = _groups(run.bars)
-    tallies = [run.tally(group, with_values=number == 0) for number, group in enumerate(groups)]
-    return _result(prepared, run, groups, tallies, seed)
-
-
-def _groups(bars: Sequence[tuple[int, Bar]]) -> list[range]:
-    """Return which requirements are counted together: at most 16 bytes are kept of a trial."""
-    if len(bars) <= _AT_ONCE:
-        return [range(len(bars))]
-    size = _AT_ONCE - 1  # the fourth place is taken by whether all limits were met so far
-    return [range(start, min(start + size, len(bars))) for start in range(0, len(bars), size)]
+    return _result(run, run.tally(), seed)
 
 
 @dataclass(slots=True, eq=False)
@@ -154,7 +176,21 @@ class _Tally:
     sums: Floats
     squares: Floats
     worst: Margins
-    clipped: int
+    clipped: int = 0
+
+    @classmethod
+    def empty(cls, bars: int, outputs: int, size: int, worst: Margins) -> _Tally:
+        """Return a tally of nothing."""
+        return cls(
+            np.zeros((bars, size), np.int64), np.zeros((outputs, size)), np.zeros((outputs, size)), worst
+        )
+
+    def add(self, other: _Tally) -> None:
+        """Add the counts of later chunks."""
+        self.passes += other.passes
+        self.sums += other.sums
+        self.squares += other.squares
+        self.clipped += other.clipped
 
 
 class _Run:
@@ -169,19 +205,17 @@ class _Run:
         self.threads = threads
         self.nominal = nominal_result(prepared)
         self.bars = [(place, bar) for place, bars in enumerate(prepared.bars) for bar in bars]
-        self.ends = physical_ends(self.chain)
+        self.plan = plan_of(self.chain, prepared.outputs)
 
-    def tally(self, group: range, *, with_values: bool) -> _Tally:
-        """Count one group of requirements over all trials."""
+    def tally(self) -> _Tally:
+        """Count over all trials, in the order of the chunks: rounding is the same however they are shared out."""
         chunks = -(-self.trials // CHUNK)
-        worst = np.empty((len(group), self.trials), np.float32)
-        pieces = [
-            range(start, min(start + self.chunks_at_once, chunks))
-            for start in range(0, chunks, self.chunks_at_once)
-        ]
+        step = self.chunks_at_once
+        pieces = [range(start, min(start + step, chunks)) for start in range(0, chunks, step)]
+        worst = np.full((len(self.bars), self.trials), np.inf, np.float32)
 
         def work(piece: range) -> list[_Tally]:
-            return [self._chunk(number, group, worst, with_values) for number in piece]
+            return [self._chunk(number, worst) for number in piece]
 
         if self.threads == 1:
             parts = [tally for piece in pieces for tally in work(piece)]
@@ -189,92 +223,52 @@ class _Run:
             with ThreadPoolExecutor(self.threads) as pool:
                 parts = [tally for found in pool.map(work, pieces) for tally in found]
         total = parts[0]
-        for part in parts[
-            1:
-        ]:  # in the order of the chunks, so that rounding is the same however they were shared out
-            total.passes += part.passes
-            total.sums += part.sums
-            total.squares += part.squares
-            total.clipped += part.clipped
+        for part in parts[1:]:
+            total.add(part)
         return total
 
-    def _chunk(self, number: int, group: range, worst: Margins, with_values: bool) -> _Tally:
+    def _chunk(self, number: int, worst: Margins) -> _Tally:
         size = min(CHUNK, self.trials - number * CHUNK)
         deviations = [None if one is None else one[:size] for one in self.draws.chunk(number)]
-        places, n = len(self.prepared.outputs), self.chain.size
-        outputs = self._asked(group, with_values)
-        tally = _Tally(
-            np.zeros((len(group), n), np.int64), np.zeros((places, n)), np.zeros((places, n)), worst, 0
-        )
+        tally = _Tally.empty(len(self.bars), len(self.prepared.outputs), self.chain.size, worst)
         kept = worst[:, number * CHUNK : number * CHUNK + size]
-        kept.fill(np.inf)
-        for points, trials, results, clipped in results_of(self.chain, outputs, deviations, self.ends):
+        for points, trials, results, clipped in results_of(self.plan, deviations, size):
             tally.clipped += clipped
             for place, output in enumerate(self.prepared.outputs):
-                if with_values and output in outputs:
-                    apart = results[output.parameter] - self.nominal.outputs[place].result[points, None]
-                    tally.sums[place, points] += apart.sum(axis=1)
-                    tally.squares[place, points] += np.einsum("nt,nt->n", apart, apart)
-            for row, member in enumerate(group):
-                place, bar = self.bars[member]
+                apart = results[output.parameter] - self.nominal.outputs[place].result[points, None]
+                tally.sums[place, points] += apart.sum(axis=1)
+                tally.squares[place, points] += np.einsum("nt,nt->n", apart, apart)
+            for row, (place, bar) in enumerate(self.bars):
                 margin = bar.margin(results[self.prepared.outputs[place].parameter], points)
                 tally.passes[row, points] += np.count_nonzero(margin >= 0, axis=1)
-                np.fmin(
-                    kept[row, trials],
-                    np.fmin.reduce(margin, axis=0),
-                    out=kept[row, trials],
-                    casting="same_kind",
-                )
+                here, lowest = kept[row, trials], np.fmin.reduce(margin, axis=0)
+                np.fmin(here, lowest, out=here, casting="same_kind")
         return tally
 
-    def _asked(self, group: range, with_values: bool) -> tuple[Output, ...]:
-        if with_values:
-            return self.prepared.outputs
-        places = {self.bars[member][0] for member in group}
-        return tuple(output for place, output in enumerate(self.prepared.outputs) if place in places)
 
-
-def _result(
-    prepared: Prepared, run: _Run, groups: Sequence[range], tallies: Sequence[_Tally], seed: int
-) -> MonteCarloResult:
-    chances: dict[int, ServedChance] = {}
-    met = np.ones(run.trials, np.bool_)
-    for group, tally in zip(groups, tallies, strict=True):
-        for row, member in enumerate(group):
-            bar = run.bars[member][1]
-            met &= tally.worst[row] >= 0
-            chances[member] = _chance(bar, tally.passes[row], tally.worst[row], run.trials)
-    first = tallies[0]
+def _result(run: _Run, tally: _Tally, seed: int) -> MonteCarloResult:
+    chances = [
+        _chance(bar, passes, worst, run.trials)
+        for (_, bar), passes, worst in zip(run.bars, tally.passes, tally.worst, strict=True)
+    ]
     outputs = []
     for place, one in enumerate(run.nominal.outputs):
-        mean = first.sums[place] / run.trials
-        variance = np.maximum(first.squares[place] / run.trials - mean**2, 0.0)
-        served = tuple(chances[member] for member, (owner, _) in enumerate(run.bars) if owner == place)
+        mean = tally.sums[place] / run.trials
+        variance = np.maximum(tally.squares[place] / run.trials - mean**2, 0.0)
+        served = tuple(chance for chance, (owner, _) in zip(chances, run.bars, strict=True) if owner == place)
         outputs.append(OutputChance(one.parameter, one.unit, one.result + mean, np.sqrt(variance), served))
+    met = np.ones(run.trials, np.bool_)
+    for worst in tally.worst:
+        met &= worst >= 0
     joint = probability(int(np.count_nonzero(met)), run.trials)
-    notes = (*prepared.notes, *_notes(run, first.clipped))
-    return MonteCarloResult(
-        prepared.chain.budget, run.nominal, run.trials, seed, tuple(outputs), joint, notes
-    )
-
-
-#: The parts of all specimens at which the worst margin is told.
-QUANTILES = (0.001, 0.01, 0.05, 0.1, 0.5, 0.9, 0.95, 0.99, 0.999)
+    notes = (*run.prepared.notes, *_notes(run, tally.clipped))
+    return MonteCarloResult(run.chain.budget, run.nominal, run.trials, seed, tuple(outputs), joint, notes)
 
 
 def _chance(bar: Bar, passes: NDArray[np.int64], worst: Margins, trials: int) -> ServedChance:
     share = np.where(bar.required, passes / trials, np.nan)
-    finite = worst[np.isfinite(worst)]
-    if len(finite) == 0:
-        edges, histogram = np.array([0.0, 0.0]), np.zeros(1, np.int64)
-        quantiles = dict.fromkeys(QUANTILES, float("nan"))
-    else:
-        values = np.quantile(finite, QUANTILES)
-        quantiles = {part: float(value) for part, value in zip(QUANTILES, values, strict=True)}
-        counts, ends = np.histogram(finite, _BINS)
-        edges, histogram = ends.astype(np.float64), counts.astype(np.int64)
     joint = probability(int(np.count_nonzero(worst >= 0)), trials) if bar.required.any() else UNKNOWN
-    return ServedChance(bar.requirement, bar.margin_unit, share, joint, quantiles, edges, histogram)
+    return ServedChance(bar.requirement, bar.margin_unit, share, joint, worst)
 
 
 UNKNOWN = Probability(float("nan"), 0.0, 1.0, 0)

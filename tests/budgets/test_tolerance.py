@@ -39,7 +39,10 @@ def sigma(amount: float, k: float = 2.0) -> dict[str, Any]:
 
 
 def receiver(**fields: Any) -> Budget:
-    """LNA 18/1.2, filter 2.5, mixer -7/7, IF 20/4 dB; ±1/0.2, ±0.3, ±0.5/0.5, ±1/0.3 dB; the filter's NF is its loss."""
+    """LNA 18/1.2, filter 2.5, mixer -7/7, IF 20/4 dB; ±1/0.2, ±0.3, ±0.5/0.5, ±1/0.3 dB.
+
+    The filter's noise figure is its loss.
+    """
     return a_chain(
         {
             "block": "LNA",
@@ -297,6 +300,15 @@ def test_more_requirements_than_are_counted_at_once_give_the_same_joint_probabil
     values = [one.joint.value for one in found.of("gain").served]
     assert values == sorted(values, reverse=True)
     assert found.joint.value == values[-1] == pytest.approx(0.65, abs=0.01)
+
+
+def test_a_budget_without_tolerances_is_as_certain_as_its_nominal_result() -> None:
+    budget = a_chain({"block": "A", "gain": 10.0}, parameter="gain")
+    for limit, share in ((9.0, 1.0), (11.0, 0.0)):
+        found = monte_carlo(budget, project_of(budget, limit=at_least(limit)), DICTIONARY, trials=100, seed=1)
+        served = found.of("gain").served[0]
+        assert served.probability[0] == served.joint.value == found.joint.value == share
+        assert served.quantile(0.5) == pytest.approx(10 - limit)
 
 
 def test_draws_beyond_zero_are_taken_back_and_said() -> None:
