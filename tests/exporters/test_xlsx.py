@@ -47,6 +47,7 @@ def pairs() -> Iterator[tuple[str, ReportCell, Cell]]:
         for offset, row in enumerate(table.rows):
             for place, cell in enumerate(row.cells):
                 there = sheet.cell(5 + offset, 1 + place)
+                assert isinstance(there, Cell)
                 yield f"{table.key} {there.coordinate}", cell, there
 
 
