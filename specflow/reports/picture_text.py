@@ -11,7 +11,7 @@ from specflow.reports.figures import rounded
 SIGNS = {"signal": "●", "noise": "○", "bound": "▕"}
 _EIGHTHS = " ▏▎▍▌▋▊▉█"
 _HEIGHTS = " ▁▂▃▄▅▆▇█"
-_MOST_NAME = 26
+_MOST_NAME = 34
 _TALL = 8
 
 

@@ -96,15 +96,18 @@ def _bars(outcome: BudgetOutcome, one: QuantityOutcome, place: int, named: Named
 
 
 def _reaches(outcome: BudgetOutcome, one: QuantityOutcome, place: int) -> list[tuple[str, float]]:
-    """Return how far each line that has a tolerance takes the quantity, larger side, all elements alike."""
-    return [
-        (
-            f"{position_words(outcome, line.row)} {line.line.parameter}",
-            abs(float(one.slopes[at, place])) * max(line.line.tolerance.minus, line.line.tolerance.plus),
-        )
-        for at, line in enumerate(outcome.lines)
-        if line.line.tolerance is not None
-    ]
+    """Return how far each line takes the quantity: slope times tolerance, the larger side.
+
+    Elements that move each by itself average, as in a root sum of squares: theirs is less by the root of their number.
+    """
+    found = []
+    for at, line in enumerate(outcome.lines):
+        tolerance = line.line.tolerance
+        if tolerance is not None:
+            few = outcome.positions[line.row].count if line.line.shared == "per element" else 1
+            reach = abs(float(one.slopes[at, place])) * max(tolerance.minus, tolerance.plus) / math.sqrt(few)
+            found.append((f"{position_words(outcome, line.row)} {line.line.parameter}", reach))
+    return found
 
 
 def _moves(outcome: BudgetOutcome, one: QuantityOutcome, place: int) -> bool:
@@ -121,10 +124,11 @@ def _reach(outcome: BudgetOutcome, one: QuantityOutcome, place: int, named: Name
     return ContributionBars(
         title=f"{outcome.budget.id}: how far the tolerance of each line takes {named(one.parameter)} "
         f"at {outcome.places[place]}",
-        words=f"Slope times tolerance, the larger side. The largest is {largest[0]} with "
+        words=f"Slope times tolerance, the larger side; elements that move each by itself average. "
+        f"The largest is {largest[0]} with "
         f"{with_unit(largest[1], unit)}.",
         bars=tuple(
-            Bar(name=name, part=reach / whole, text=with_unit(float(f"{reach:.3g}"), unit))
+            Bar(name=name, part=reach / whole, text=with_unit(float(f"{reach:.2g}"), unit))
             for name, reach in reaches
         ),
     )

@@ -16,6 +16,7 @@ from specflow.model.card import Card
 from specflow.tui.widgets.facts import Facts
 from specflow.tui.widgets.findings import FindingsView
 from specflow.tui.widgets.margin_bar import MarginBarView
+from specflow.tui.widgets.picture import PictureView
 from specflow.tui.widgets.proof_grid import ProofGridView
 from specflow.tui.widgets.proved_line import ProvedLine
 from specflow.tui.widgets.rule import Rule
@@ -113,6 +114,10 @@ def _parts(card: Card) -> Iterator[Widget]:
         yield Static(Content("\n").join([Content(f"• {remark}") for remark in card.remarks]), classes="text")
     yield Rule("facts")
     yield Facts((*card.facts, ("As written", card.limit_text)))
+    if card.pictures:
+        yield Rule("predicted by its budgets")
+        for picture in card.pictures:
+            yield PictureView(picture)
     yield Rule("trail")
     yield TrailView(card.trail)
     yield Rule(f"findings ({len(card.findings)})")
