@@ -46,6 +46,12 @@ class AcceptanceInterval:
             self.slack,
         )
 
+    def side(self, *, lower: bool) -> AcceptanceInterval:
+        """Return one side alone."""
+        if lower:
+            return AcceptanceInterval(self.lower, None, self.lower_strict, False, self.slack)
+        return AcceptanceInterval(None, self.upper, False, self.upper_strict, self.slack)
+
     def relaxed(self, test_tolerance: Floats) -> AcceptanceInterval:
         """Return the test limits: the core limits relaxed by a test tolerance.
 
@@ -152,6 +158,23 @@ def _no_room(
     if room.all():
         return np.zeros((), bool)
     return ~room & ~_beyond_doubt(low, high, bounds, guard)
+
+
+def nothing_acceptable(
+    low: NDArray[np.float64],
+    high: NDArray[np.float64],
+    bounds: AcceptanceInterval,
+    tightened: Floats,
+    guard: Floats = 0.0,
+) -> NDArray[np.bool_]:
+    """Return where tightening (by excess uncertainty, and a guard band) leaves no value that could be accepted.
+
+    There a reading is undecidable, unless it misses the limits themselves by more than the guard band.
+    """
+    room = np.asarray(bounds.inward(np.asarray(tightened) + guard).leave_room)
+    if room.all():
+        return np.zeros(low.shape, bool)
+    return np.broadcast_to(~room, low.shape) & ~_beyond_doubt(low, high, bounds, guard)
 
 
 def expanded(standard_uncertainty: Floats, coverage_factor: float = COVERAGE_FACTOR) -> Floats:

@@ -7,6 +7,7 @@ does not name (the axis of a mask, the actual frequency along a range) is taken 
 from __future__ import annotations
 
 from dataclasses import dataclass
+from decimal import Decimal
 from functools import reduce
 
 import numpy as np
@@ -15,7 +16,7 @@ from numpy.typing import NDArray
 from specflow.limits.bounds import Bounds, LimitContext
 from specflow.limits.conversion import unit_of
 from specflow.limits.evaluation import evaluate_limit
-from specflow.model.expression import Negative, Number
+from specflow.model.expression import Expression, Negative, Number
 from specflow.model.limit import Between, Bound, Limit
 from specflow.model.project import Policy
 from specflow.model.requirement import DecisionRule, RuleName
@@ -28,6 +29,7 @@ from specflow.statistics.decision import (
     excess,
     guard_band,
     margins,
+    nothing_acceptable,
 )
 from specflow.statistics.rounding import digit_of, rounded
 from specflow.units import Unit, closeness, converter, parse_unit, tolerance_unit
@@ -128,14 +130,13 @@ def judge(records: Records, served: Served, judgement: Judgement) -> Readings:
     low, high, lost = in_bandwidth_of_limit(
         records, record, served.low, served.high, bounds.bandwidth_hz, judgement.parsed_unit
     )
-    seen_low, seen_high, why = _compared(low, high, judgement)
+    seen, why = _compared(low, high, judgement)
     core = _core(
         bounds, judgement, records.exact if isinstance(records.exact, bool) else records.exact[record]
     )
     shift, inadmissible = _shift(u, judgement, bounds)
     guard = 0.0 if judgement.rule.name is RuleName.SIMPLE else guard_band(judgement.rule.guard_factor, u)
-    verdict = decide(judgement.rule.name, seen_low, seen_high, core.inward(shift), guard)
-    margin = margins(seen_low, seen_high, core)
+    verdict, margin = _decided(seen, core, shift, guard, judgement.rule)
     guarded = margin - shift - guard
     unsure = np.isnan(shift) if isinstance(shift, np.ndarray) else np.zeros((), bool)
     _overrule(verdict, unsure | lost, inadmissible)
@@ -186,26 +187,71 @@ def _flag(flags: NDArray[np.bool_]) -> NDArray[np.bool_] | bool:
     return bool(flags[0]) if flags.size == 1 else flags
 
 
-def _compared(low: Array, high: Array, judgement: Judgement) -> tuple[Array, Array, list[str]]:
-    """Return the values that are compared: as they are, or rounded to the last digit of the limit (ASTM E29)."""
+#: Readings (low, high) as they are compared with the lower and the upper side of a limit.
+Seen = tuple[tuple[Array, Array], tuple[Array, Array]]
+
+
+def _decided(
+    seen: Seen, core: AcceptanceInterval, shift: Floats, guard: Floats, rule: DecisionRule
+) -> tuple[Codes, Array]:
+    """Return verdict and plain margin of the readings; each side has its own where they are rounded differently."""
+    of_lower, of_upper = seen
+    if of_lower is of_upper:
+        verdict = decide(rule.name, *of_lower, core.inward(shift), guard)
+        margin = margins(*of_lower, core)
+    else:
+        lower, upper = core.side(lower=True), core.side(lower=False)
+        verdict = np.maximum(
+            decide(rule.name, *of_lower, lower.inward(shift), guard),
+            decide(rule.name, *of_upper, upper.inward(shift), guard),
+        )
+        margin = np.fmin(margins(*of_lower, lower), margins(*of_upper, upper))
+    if rule.excess_tightens or of_lower is not of_upper:
+        verdict[nothing_acceptable(*of_lower, core, shift, guard)] = Verdict.UNDECIDABLE
+    return verdict, margin
+
+
+def _compared(low: Array, high: Array, judgement: Judgement) -> tuple[Seen, list[str]]:
+    """Return the values that are compared with either side: as they are, or rounded as that side is written.
+
+    The rounding method (ASTM E29) rounds to the last digit of the limit; the two sides may be written to different
+    ones.
+    """
+    as_read = low, high
     if judgement.rule.comparison == "absolute":
-        return low, high, []
-    text = _limit_digits(judgement.limit)
-    if text is None:
-        return low, high, ["the rounding method needs a limit written as a number, or with a rounding step"]
-    step = digit_of(text) if judgement.limit.rounding is None else abs(digit_of(text))
+        return (as_read, as_read), []
+    texts = _limit_digits(judgement.limit)
+    if texts is None:
+        words = "the rounding method needs a limit written as a number, or with a rounding step"
+        return (as_read, as_read), [words]
+    exact = judgement.limit.rounding is None
+    first, second = (digit_of(text) if exact else abs(digit_of(text)) for text in texts)
+    of_lower = _rounded(low, high, first)
+    return (of_lower, of_lower if first == second else _rounded(low, high, second)), []
+
+
+def _rounded(low: Array, high: Array, step: Decimal) -> tuple[Array, Array]:
     seen = rounded(low, step)
-    return seen, seen if high is low else rounded(high, step), []
+    return seen, seen if high is low else rounded(high, step)
 
 
-def _limit_digits(limit: Limit) -> str | None:
+def _limit_digits(limit: Limit) -> tuple[str, str] | None:
+    """Return the numbers whose last digits the two sides are rounded to."""
     if limit.rounding is not None:
-        return limit.rounding.step.text
+        return limit.rounding.step.text, limit.rounding.step.text
     match limit.tree:
         case Bound(value=Number(text=text)) | Bound(value=Negative(operand=Number(text=text))):
+            return text, text
+        case Between(lower=lower, upper=upper):
+            texts = _number_text(lower), _number_text(upper)
+            return None if texts[0] is None or texts[1] is None else (texts[0], texts[1])
+    return None
+
+
+def _number_text(value: Expression) -> str | None:
+    match value:
+        case Number(text=text) | Negative(operand=Number(text=text)):
             return text
-        case Between(lower=Number(text=first), upper=Number(text=second)):
-            return min(first, second, key=digit_of)
     return None
 
 
