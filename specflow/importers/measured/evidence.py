@@ -205,7 +205,10 @@ def _ask_for_item(work: TableWork, method: Method, items: TextColumn) -> None:
     if method not in _ON_AN_ITEM or not unnamed or (pivot is not None and "{item}" in pivot.header):
         return
     if unnamed == len(work.rows):
-        remedy = '--state item=SERIAL, an item column, or a line "DUT: SERIAL" above the table'
+        remedy = (
+            '--state item=SERIAL, an item column, or a line "DUT: SERIAL" above the table; '
+            "results of a simulation: --state method=analysis"
+        )
         work.ask("item", "", f"a {method.value} must say which item it was on", remedy)
     else:
         work.notes.append(f"{unnamed} of {len(work.rows)} rows name no item")

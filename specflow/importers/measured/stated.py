@@ -19,7 +19,7 @@ from specflow.conditions import (
     unlocated_temperature_hint,
 )
 from specflow.errors import UnitError
-from specflow.importers.measured.day import read_day
+from specflow.importers.measured.day import day_first, read_day
 from specflow.importers.measured.facts import Fact
 from specflow.importers.measured.header_text import known_unit, read_header
 from specflow.importers.measured.names import NAMES, OF_THE_SHEET, canonical, name_of
@@ -189,6 +189,7 @@ class _Collector:
             self._ask(key, "", f"{key!r} ({by}) is nothing that can be stated", remedy)
 
     def _take_name(self, name: str, key: str, text: str, by: str, cell: str) -> None:
+        text = day_first(key, text) if name == "date" else text
         if name == "date" and read_day(text) is None:
             self._ask(key, cell, f"{text!r} is no date with one meaning", "say --state date=YYYY-MM-DD")
             return
@@ -198,7 +199,9 @@ class _Collector:
             return
         if choices and text.casefold() not in {choice.value for choice in choices}:
             known_choices = ", ".join(choice.value for choice in choices)
-            self._ask(key, cell, f"{text!r} is no {name} ({by})", f"one of: {known_choices}")
+            is_simulation = name == "method" and text.casefold().startswith("simulat")
+            hint = "a simulation is an analysis; " if is_simulation else ""
+            self._ask(key, cell, f"{text!r} is no {name} ({by})", f"{hint}one of: {known_choices}")
             return
         if name == "item":
             self.stated.items.append(Said(text, by, key))

@@ -225,3 +225,11 @@ def test_a_stated_temperature_that_is_not_one_value_is_asked_about(tmp_path: Pat
 def test_a_date_with_two_readings_is_asked_about(tmp_path: Path) -> None:
     rows = [["Date", "02/03/2026"], ["f (GHz)", "Gain (dB)"], [27.5, 20]]
     assert "no date with one meaning" in questions(one_table(book(tmp_path / "a.xlsx", rows)))
+
+
+def test_dc_supply_columns_by_their_usual_names(tmp_path: Path) -> None:
+    rows = [["f (GHz)", "Vdc (V)", "Idc (mA)"], [27.5, 28, 410]]
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows)))
+    assert table.document is not None and table.columns is not None
+    assert table.document.values[0].quantity.parameter == "supply_current"
+    assert list(table.columns.conditions.numeric["supply_voltage"]) == [28]

@@ -149,3 +149,35 @@ def test_a_table_with_the_quantity_in_the_rows_is_asked_about(tmp_path: Path) ->
 def test_a_time_of_day_is_a_remark(tmp_path: Path) -> None:
     rows = [["Time", "f (GHz)", "Gain (dB)"], ["14:32:05", 27.5, 20]]
     assert taken(one_table(book(tmp_path / "a.xlsx", rows)))
+
+
+def test_a_german_heading_is_understood(tmp_path: Path) -> None:
+    lines = [
+        "Prüfling;LNA-2",
+        "Datum;04.05.2026",
+        "Labor;Hafenlabor (erfunden)",
+        "",
+        "Frequenz [GHz];Umgebungstemperatur [°C];Verstärkung [dB]",
+        "27,5;85;19,5",
+        "30,0;85;19,1",
+    ]
+    path = tmp_path / "a.csv"
+    path.write_bytes("\r\n".join(lines).encode("cp1252"))
+    table = taken(one_table(path, stated={}))
+    assert table.columns is not None and table.document is not None
+    assert (table.columns.items.word(0), str(table.document.performed_on)) == ("LNA-2", "2026-05-04")
+    assert table.document.performer.startswith("Hafenlabor")
+    assert list(table.columns.values["Verstärkung"].low) == [19.5, 19.1]
+    assert list(table.columns.conditions.numeric["temperature_ambient"]) == [85, 85]
+
+
+def test_a_dotted_date_under_another_key_is_asked_about(tmp_path: Path) -> None:
+    rows = [["Date", "04.05.2026"], *TABLE]
+    assert "no date with one meaning" in questions(one_table(book(tmp_path / "a.xlsx", rows)))
+
+
+def test_the_way_to_say_that_a_table_is_simulated_is_told(tmp_path: Path) -> None:
+    path = book(tmp_path / "a.xlsx", TABLE)
+    assert "simulation: --state method=analysis" in questions(one_table(path, stated={"block": "LNA"}))
+    said = {"block": "LNA", "method": "simulation"}
+    assert "a simulation is an analysis" in questions(one_table(path, stated=said))
