@@ -136,6 +136,13 @@ class PointResults:
         """Return the number of points proved."""
         return int(np.count_nonzero(self.proved))
 
+    def source_at(self, point: int) -> tuple[str, int, int] | None:
+        """Return table, place of the value column and row of the governing record at a point; None without one."""
+        table = int(self.table[point])
+        if table < 0:
+            return None
+        return self.tables[table], int(self.column[point]), int(self.row[point])
+
     def points_with(self, *verdicts: Verdict) -> list[int]:
         """Return the points whose governing verdict is one of these."""
         return np.flatnonzero(np.isin(self.verdict, verdicts)).tolist()

@@ -135,12 +135,11 @@ def words_of(points: Points | None, place: int) -> str:
 
 def record_at(found: PointResults | None, place: int, finder: OriginFinder) -> RecordRef | None:
     """Return the record that governs a point, or None."""
-    table = int(found.table[place]) if found is not None else -1
-    if found is None or table < 0:
+    source = found.source_at(place) if found is not None else None
+    if source is None:
         return None
-    name = found.tables[table]
-    column = finder.table(name).values[int(found.column[place])].name
-    return RecordRef(name, column, int(found.row[place]))
+    table, column, row = source
+    return RecordRef(table, finder.table(table).values[column].name, row)
 
 
 def _point_row(

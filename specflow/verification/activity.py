@@ -258,15 +258,13 @@ def _point(points: Points, one: ItemPoints, place: int, unit: str) -> GoverningP
         float(results.guarded_margin[place]),
         unit,
         one.item,
-        record_at(one, place),
+        _record(one, place),
     )
 
 
-def record_at(one: ItemPoints, place: int) -> RecordRef | None:
-    """Return the governing record at a point; None where there is none."""
-    results = one.results
-    table = int(results.table[place])
-    if table < 0:
+def _record(one: ItemPoints, place: int) -> RecordRef | None:
+    source = one.results.source_at(place)
+    if source is None:
         return None
-    found = one.tables[table]
-    return RecordRef(found.id, found.values[int(results.column[place])].name, int(results.row[place]))
+    table, column, row = source
+    return RecordRef(table, one.tables[int(one.results.table[place])].values[column].name, row)
