@@ -2,15 +2,18 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING, Annotated
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Annotated, Any
 
 import typer
 
-from specflow.cli.console import progress, put, put_json
-from specflow.cli.options import JsonOption, ProjectOption, open_store
+from specflow.cli.console import ask, person, progress, put, put_json, say
+from specflow.cli.options import ByOption, DryRunOption, JsonOption, ProjectOption, YesOption, open_store
+from specflow.errors import SpecflowError
 
 if TYPE_CHECKING:
     from specflow.workflows.budget_outcome import HowToCompute
+    from specflow.workflows.edit_budget import EditPreview
     from specflow.workflows.show_budget import ShownBudget
 
 PICTURE_WIDTH = 96
@@ -41,6 +44,19 @@ MethodOption = Annotated[
 TrialsOption = Annotated[int, typer.Option("--trials", help="Specimens of the Monte Carlo run.", min=1)]
 SeedOption = Annotated[int, typer.Option("--seed", help="Seed of the Monte Carlo run.", min=0)]
 
+SetOption = Annotated[
+    list[str] | None,
+    typer.Option(
+        "--set",
+        help="Edit a line: 'POSITION PARAMETER = VALUE', such as '4 noise_figure = 1.7 dB ± 0.2 dB' (may be repeated).",
+        show_default=False,
+    ),
+]
+ReasonOption = Annotated[
+    str,
+    typer.Option("--reason", help="Why the budget is edited; it stays in the history.", show_default=False),
+]
+
 
 def budget(
     code: CodeArgument = "",
@@ -48,6 +64,11 @@ def budget(
     method: MethodOption = None,
     trials: TrialsOption = 20_000,
     seed: SeedOption = 1,
+    settings: SetOption = None,
+    reason: ReasonOption = "",
+    yes: YesOption = False,
+    dry_run: DryRunOption = False,
+    by: ByOption = "",
     project: ProjectOption = "",
     as_json: JsonOption = False,
 ) -> None:
@@ -56,10 +77,16 @@ def budget(
     Without an id all budgets are listed with their smallest margin. With one: the cumulative table at the worst
     condition point, or at another with --at; margins to the limits served; nominal, worst case, root sum of squares and
     Monte Carlo side by side, each with what it assumes; who makes how much; and how much each line moves the result.
+
+    --set edits a line. What it changes and what that does to the margins is shown first; accepted, it is a new revision
+    of the budget. Positions and everything else are edited in the workbook, and loaded.
     """
     from specflow.cli.tables import put_report, put_table, report_as_json, table_as_json
     from specflow.workflows.show_budget import list_budgets, show_budget
 
+    if settings:
+        _edit(code, settings, reason, project, Answer(yes=yes, dry_run=dry_run, by=by), as_json=as_json)
+        return
     if not code:
         with open_store(project, read_only=True) as store:
             table = list_budgets(store)
@@ -78,6 +105,65 @@ def budget(
     _put_pictures(shown)
     for name, value in shown.report.facts:
         put(f"{name}: {value}")
+
+
+@dataclass(frozen=True, slots=True)
+class Answer:
+    """What the person said beforehand about storing."""
+
+    yes: bool
+    dry_run: bool
+    by: str
+
+
+def _edit(
+    code: str, settings: list[str], reason: str, project: str, answer: Answer, *, as_json: bool
+) -> None:
+    from specflow.workflows.edit_budget import accept_edit, preview_edit
+
+    if not code:
+        raise SpecflowError(
+            "--set does not say of which budget", hint="name the budget: specflow budget ID --set ..."
+        )
+    if not reason and not answer.dry_run:
+        raise SpecflowError(
+            "an edit of a budget needs a reason", hint="say why with --reason; --dry-run looks only"
+        )
+    with open_store(project, read_only=answer.dry_run) as store:
+        preview = preview_edit(store, code, settings, reason)
+        if not as_json:
+            _show_edit(preview)
+        wanted = bool(preview.changes) and not answer.dry_run
+        stored = wanted and (answer.yes or ask("Store this as a new revision of the budget?"))
+        if stored:
+            accept_edit(store, preview, by=person(answer.by), reason=reason)
+        revision = store.revision
+    if as_json:
+        put_json(_edit_as_json(preview, stored, revision))
+    elif preview.changes:
+        say(f"stored; the project is at revision {revision}" if stored else "nothing was stored")
+
+
+def _show_edit(preview: EditPreview) -> None:
+    from specflow.cli.tables import put_table
+    from specflow.reports.changes import changes_table
+
+    if not preview.changes:
+        say("nothing changes")
+        return
+    put_table(changes_table(preview.changes, {}).without("read_as"))
+    put("")
+    put_table(preview.moved)
+
+
+def _edit_as_json(preview: EditPreview, stored: bool, revision: int) -> dict[str, Any]:
+    from specflow.cli.tables import table_as_json
+
+    changes = [
+        one.model_dump(mode="json", include={"noun", "id", "action", "fields"}) for one in preview.changes
+    ]
+    moved = table_as_json(preview.moved)
+    return {"changes": changes, "moved": moved, "stored": stored, "project_revision": revision}
 
 
 def _put_pictures(shown: ShownBudget) -> None:
