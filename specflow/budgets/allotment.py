@@ -128,8 +128,8 @@ def sides_that_matter(probe: Probe) -> NDArray[np.bool_]:
 def taken_first(probe: Probe, numbers: Sequence[int]) -> tuple[list[Allotment], list[str]]:
     """Return what lines take first, and notes on those that nothing bounds.
 
-    A line with a tolerance takes its figure with it, from the least to the most of all places. One without takes its
-    figure as a limit where only one side of it hurts; where both do it is taken as exact, and said.
+    A line with a tolerance takes its figure with it, from the least to the most of all places, on the sides that hurt.
+    One without takes its figure as a limit where only one side hurts; where both do it is taken as exact, and said.
     """
     matters = sides_that_matter(probe)
     found: list[Allotment] = []
@@ -138,11 +138,13 @@ def taken_first(probe: Probe, numbers: Sequence[int]) -> tuple[list[Allotment], 
         read = probe.chain.lines[number]
         if read.role.figure == "source_k":
             continue
-        if moves(read.line):
-            low, high = bounds(read)
-            found.append(_first(read, float(low.min()), float(high.max()), "figure and tolerance"))
-            continue
         low_hurts, high_hurts = matters[number]
+        if moves(read.line):
+            ends = bounds(read)
+            low = float(ends[0].min()) if low_hurts else -math.inf
+            high = float(ends[1].max()) if high_hurts else math.inf
+            found.append(_first(read, low, high, "figure and tolerance"))
+            continue
         if low_hurts and high_hurts:
             notes.append(
                 f"{read.line.place} states no tolerance and is taken as exact: nothing keeps it on either side"

@@ -97,7 +97,8 @@ def test_ends(probe: Probe, given: Sequence[Ends | None], notes: Sequence[str] =
         if own is None and moves(read.line):
             low, high = bounds(read)
             own = np.broadcast_to(low, (probe.size,)), np.broadcast_to(high, (probe.size,))
-            said.append(f"{line_name(read)} moves within its tolerance; no requirement holds it there")
+            if matters[number].any():
+                said.append(f"{line_name(read)} moves within its tolerance; no requirement holds it there")
         elif own is None and read.role.figure == "source_k":
             said.append(f"{line_name(read)} is what surrounds the system; it is taken as stated")
         elif own is None and matters[number].any():

@@ -193,7 +193,7 @@ def test_error_vector_and_noise_powers_share_as_they_add() -> None:
 
 @settings(max_examples=25, deadline=None)
 @given(
-    gains=st.lists(st.floats(-8, 20), min_size=2, max_size=5),
+    gains=st.lists(st.floats(0, 20), min_size=2, max_size=5),
     noise=st.lists(st.floats(0.5, 8), min_size=5, max_size=5),
     limit=st.floats(1, 12),
     way=st.sampled_from(["equal", "proportional"]),
@@ -211,5 +211,5 @@ def test_shares_put_back_in_fill_the_limit(
     }
     result = evaluate_budget(chain, project_of(chain, limit=bar), DICTIONARY, values=values)
     margin = result.served[0].smallest_margin
-    assert -1e-9 <= margin < 0.05
+    assert -1e-9 <= margin < 0.06  # each of five figures is rounded down to 0.01 dB
     assert np.isfinite(margin)
