@@ -47,6 +47,15 @@ Open {made.folder / EXPORTS[1]} in a browser, or try (cd {made.folder} first):
   specflow status UT-EIRP-1 --as-of {AS_OF}      a failing corner: which point, by how much, on which item
   specflow trace UT-EIRP-1 --as-of {AS_OF}       up to the system, down to file, sheet and cell
   specflow check --as-of {AS_OF}                 what the rules find, and what to do about it
+  specflow budget B-RX-GT                           a budget at its worst point: who eats the margin
   specflow browse                                   the same in the terminal
 README.md lists the traps that were set in these files, and what the tool says to each.
+{_budget_line(made)}
 Status here is engineering evidence, not a certificate."""
+
+
+def _budget_line(made: Demo) -> str:
+    """Say how the budget of the example that is nearest to its limit stands."""
+    from specflow.workflows.show_budget import nearest_budget
+
+    return nearest_budget(made.evaluation.snapshot, made.evaluation.dictionary)

@@ -14,9 +14,9 @@ from specflow.model.picture import Picture
 from specflow.model.report import Report, ReportTable
 from specflow.model.snapshot import Snapshot
 from specflow.parameters import Dictionary
-from specflow.reports.budget import budget_report, titles
+from specflow.reports.budget import budget_report, titles, worst_words
 from specflow.reports.budget_list import budgets_table
-from specflow.reports.pictures import budget_pictures
+from specflow.reports.pictures import budget_pictures, probability_words
 from specflow.store import ProjectStore
 from specflow.workflows.budget_outcome import HowToCompute, Step, budget_outcome
 from specflow.workflows.evaluate_project import project_dictionary
@@ -67,6 +67,25 @@ def show_budget(
         budget_report(outcome, place, named),
         budget_pictures(outcome, place, named),
     )
+
+
+def nearest_budget(snapshot: Snapshot, dictionary: Dictionary) -> str:
+    """Say how the budget with the smallest nominal margin stands; "" where none has any."""
+    found = outcomes_of(snapshot.all(Budget), snapshot, dictionary)
+    known = [one for one in found.values() if isinstance(one, BudgetOutcome) and one.worst is not None]
+    if not known:
+        return ""
+
+    def smallest(outcome: BudgetOutcome) -> float:
+        return min(one.smallest_margin for one in outcome.served if one.worst >= 0)
+
+    nearest = min(known, key=smallest)
+    chances = (
+        f"; {probability_words(nearest.chances[0])} of specimens meet it everywhere"
+        if nearest.chances
+        else ""
+    )
+    return f"Nearest to its limit: {nearest.budget.id} ({nearest.budget.title}), {worst_words(nearest)}{chances}."
 
 
 def outcomes_of(
