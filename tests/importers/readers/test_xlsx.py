@@ -86,6 +86,13 @@ def test_formula_without_a_stored_value_is_odd_and_its_column_exists(tmp_path: P
     assert grid.column_floats(3, 1, 3)[1] == [1, 2]
 
 
+@pytest.mark.parametrize("value", ["", "<v/>", "<v />", "<v></v>"])
+def test_every_writer_s_way_to_store_no_value_is_seen(tmp_path: Path, value: str) -> None:
+    cells = f'<c r="A1"><v>1.5</v></c><c r="B1"><f>A1*2</f>{value}</c>'
+    grid = read_one(by_hand(tmp_path / "a.xlsx", f'<row r="1">{cells}</row>'))
+    assert list(grid.odd) == [OddRun(2, 1, 1, OddCell(OddKind.NO_VALUE))]
+
+
 def test_sheet_of_nothing_but_uncalculated_formulas_is_not_taken_for_empty(tmp_path: Path) -> None:
     grid = read_one(
         by_hand(tmp_path / "a.xlsx", '<row r="3"><c r="B3"><f>1+1</f></c><c r="C3"><f/></c></row>')
