@@ -4,10 +4,11 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from specflow.importers.measured.header_cells import HeaderCell
 from specflow.importers.measured.header_text import HeaderText
 from specflow.importers.measured.mapping import ColumnMapping
 from specflow.importers.measured.result import ColumnReading, Question, Role
-from specflow.importers.measured.tables import FoundTable, HeaderCell
+from specflow.importers.measured.tables import FoundTable
 from specflow.importers.measured.unit_source import FoundUnit, find_unit
 from specflow.importers.readers import column_letter
 from specflow.model.evidence import SpectrumKind

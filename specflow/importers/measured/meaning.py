@@ -22,6 +22,7 @@ from specflow.importers.measured.condition_column import (
 )
 from specflow.importers.measured.constants import ConstantColumn, read_constants
 from specflow.importers.measured.context import Context
+from specflow.importers.measured.header_cells import HeaderCell
 from specflow.importers.measured.header_text import header_key, known_unit, read_header
 from specflow.importers.measured.mapping import ColumnMapping, LayoutMapping
 from specflow.importers.measured.pairing import of_their_values, uncertainty_column, without_doubles
@@ -29,7 +30,7 @@ from specflow.importers.measured.quantity_text import name_quantity
 from specflow.importers.measured.result import Role
 from specflow.importers.measured.roles import UncertaintyWords, role_of_words, uncertainty_of
 from specflow.importers.measured.stated import PERSON, Stated
-from specflow.importers.measured.tables import FoundTable, HeaderCell
+from specflow.importers.measured.tables import FoundTable
 from specflow.importers.measured.value_column import mapped_value, named_value
 from specflow.importers.readers import column_letter, looks_numeric
 
@@ -175,6 +176,23 @@ class _Reader:
         texts = [str(cells.value(row)) for row in cells.odd[:_MOST_TEXTS]]
         if not cells.numeric[places].any() and not any(map(_READING_AS_TEXT.match, texts)):
             return heading.means(Role.REMARK, "words that name no condition; kept as a remark")
+        item, pattern = self._item_in(heading.header.text)
+        if item:
+            what = f"the header names the item {item}"
+            remedy = (
+                f'let a mapping read the items from the headers, [table.pivot] header = "{pattern}", parameter and '
+                "unit; or put the items into a column of their own"
+            )
+            return heading.ask(what, remedy)
         near = ", ".join(one.key for one in self._context.dictionary.suggest(heading.parts.name))
         odd = f"; {heading.parts.odd_unit!r} is no unit" if heading.parts.odd_unit else ""
         return heading.ask_parameter(f"names no parameter and no condition that is known{odd}", near)
+
+    def _item_in(self, text: str) -> tuple[str, str]:
+        """The item of the project that a header names, and the header with {item} in its place; "" without one."""
+        names = {name for one in self._context.snapshot.items for name in (one.id, one.serial) if name}
+        for name in sorted(names, key=lambda name: (-len(name), name)):
+            found = re.search(rf"(?<!\w){re.escape(name)}(?!\w)", text, re.IGNORECASE)
+            if found:
+                return name, f"{text[: found.start()]}{{item}}{text[found.end() :]}"
+        return "", ""

@@ -6,6 +6,7 @@ import re
 from collections.abc import Iterable
 from dataclasses import dataclass, field, replace
 
+from specflow.conditions import find_dimension
 from specflow.importers.measured.header_text import HeaderText, known_unit
 from specflow.model.parameter import Parameter
 from specflow.parameters import Candidate, Dictionary, suits
@@ -22,6 +23,7 @@ _POLARISATIONS = {
     "rhc": "RHCP", "rhcp": "RHCP", "lhc": "LHCP", "lhcp": "LHCP",
 }  # fmt: skip
 _AT_PLANE = re.compile(r"^(?P<name>.*\S)\s+(?:at|referred to)\s+(?:the\s+)?(?P<place>\S.*)$", re.IGNORECASE)
+_AMOUNT = re.compile(r"[+\-−]?[0-9][0-9.,]*|(?<!\w)_(?!\w)")
 _SCATTERING = re.compile(r"(?<![A-Za-z0-9])\|?S[0-9]{2}\|?(?![A-Za-z0-9])", re.IGNORECASE)
 _NOT_A_READING = {
     "min": "the smallest of several readings, or a limit",
@@ -127,21 +129,35 @@ def _placed(named: NamedQuantity, places: list[str], planes: Iterable[str]) -> N
     return named
 
 
+def _condition_in(place: str) -> str:
+    """The dimension that a place names ("28 GHz", "baseplate temperature -20"), "" if it is none."""
+    found = _AMOUNT.search(place)
+    dimension = find_dimension((place[: found.start()] if found else place).strip(" =:"))
+    if dimension is not None and dimension.unit:  # a port 2 may be a plane
+        return dimension.name
+    if found is None or found.start() > 0:
+        return ""
+    return "frequency" if "hz" in place.casefold() else "DIMENSION"
+
+
 def _unknown_place(place: str) -> str:
-    if re.match(r"[+\-−]?[0-9_]", place):
+    if _condition_in(place):
         return f"{place!r} is a condition in the header"
     return f"{place!r} is no plane that is known"
 
 
 def _place_remedy(place: str, known: Iterable[str]) -> str:
-    if re.match(r"[+\-−]?[0-9_]", place):
-        dimension = "{frequency}" if "hz" in place.casefold() else "{DIMENSION}"
-        pattern = re.sub(r"[0-9][0-9.,]*", dimension, place, count=1)
-        return (
-            f'let a mapping read it from the headers, [table.pivot] header = "... @ {pattern} ..."; '
-            "or give the condition a column of its own"
-        )
-    return f"name the plane in the mapping (known: {', '.join(sorted(known)) or 'none'})"
+    dimension = _condition_in(place)
+    if not dimension:
+        return f"name the plane in the mapping (known: {', '.join(sorted(known)) or 'none'})"
+    if not re.search(r"[0-9_]", place):
+        return "give the condition a column of its own"
+    at = "@ " if _AMOUNT.match(place) else ""
+    pattern = _AMOUNT.sub("{" + dimension + "}", place, count=1)
+    return (
+        f'let a mapping read it from the headers, [table.pivot] header = "... {at}{pattern} ..."; '
+        "or give the condition a column of its own"
+    )
 
 
 def _doubted(

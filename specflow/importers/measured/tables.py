@@ -10,14 +10,21 @@ from __future__ import annotations
 
 import re
 from collections.abc import Callable, Iterator
-from dataclasses import dataclass, field, replace
+from dataclasses import dataclass, field
 
 import numpy as np
 
 from specflow.importers.measured.cells import ColumnCells, Flags, Rows, read_column
-from specflow.importers.measured.header_text import header_key, known_unit, without_coverage
+from specflow.importers.measured.header_cells import (
+    HeaderCell,
+    find_units_row,
+    has_second_row,
+    read_headers,
+    with_unit,
+)
+from specflow.importers.measured.header_text import header_key
 from specflow.importers.measured.statements import is_reading, statement_rows, statement_text
-from specflow.importers.readers import Grid, Value, address, is_blank, looks_numeric
+from specflow.importers.readers import Grid, address, is_blank, looks_numeric
 
 Recognises = Callable[[str], bool]
 
@@ -27,27 +34,6 @@ _LOOK_AHEAD = 5
 _SHARE_OF_WORDS = (
     0.75  # a row of words in the place of readings ("N/A") fills nearly all cells, a signature does not
 )
-_NO_UNIT = ("", "-", "—", "–", "n/a")
-
-
-@dataclass(frozen=True, slots=True)
-class HeaderCell:
-    """One header: its column, its text as written, and the unit of a units row below it ("" without one).
-
-    ``k`` is a coverage factor that stands beside that unit.
-    """
-
-    column: int
-    row: int
-    text: str
-    unit: str = ""
-    unit_row: int | None = None
-    k: float | None = None
-
-    @property
-    def cell(self) -> str:
-        """Its address."""
-        return address(self.row, self.column)
 
 
 @dataclass(frozen=True, slots=True)
@@ -115,10 +101,11 @@ def find_tables(grid: Grid, recognises: Recognises) -> tuple[FoundTable, ...]:
 
 def cut_table(grid: Grid, top: int, row: int, header_rows: int, recognises: Recognises) -> FoundTable:
     """Return the table whose header begins in ``row`` and has ``header_rows`` rows."""
-    headers = _headers(grid, row, header_rows)
-    units_row = _units_row(grid, row + header_rows, headers)
+    header_rows = max(header_rows, 2 if has_second_row(grid, row) else 1)
+    headers = read_headers(grid, row, header_rows)
+    units_row = find_units_row(grid, row + header_rows, headers)
     if units_row is not None:
-        headers = tuple(_with_unit(grid, header, units_row) for header in headers)
+        headers = tuple(with_unit(grid, header, units_row) for header in headers)
     first = row + header_rows if units_row is None else units_row + 1
     return _Body(grid, headers, first, recognises).table(top, row, units_row)
 
@@ -148,7 +135,9 @@ def _are_headers(texts: dict[int, str], recognises: Recognises) -> bool:
 def _is_above_headers(grid: Grid, row: int, recognises: Recognises) -> bool:
     """Whether the next row is a row of headers, too, and no units row."""
     below = _words(grid, row + 1) if row < grid.last_row else {}
-    return _are_headers(below, recognises) and _units_row(grid, row + 1, _headers(grid, row, 1)) is None
+    return (
+        _are_headers(below, recognises) and find_units_row(grid, row + 1, read_headers(grid, row, 1)) is None
+    )
 
 
 def _words(grid: Grid, row: int) -> dict[int, str]:
@@ -180,60 +169,6 @@ def _has_numbers_below(grid: Grid, row: int, texts: dict[int, str]) -> bool:
         if seen >= _LOOK_AHEAD:
             return False
     return False
-
-
-def _headers(grid: Grid, row: int, count: int) -> tuple[HeaderCell, ...]:
-    """Headers of one or several rows; the second row fills a lone ``_`` of the first, else it is put behind."""
-    found = []
-    for column in range(grid.first_column, grid.last_column + 1):
-        text = ""
-        for number in range(row, row + count):
-            value = grid.value(number, column)
-            more = " ".join(_header_word(value).split())
-            if re.search(r"(?<!\w)_(?!\w)", text):
-                text = re.sub(r"(?<!\w)_(?!\w)", lambda _, word=more: word, text, count=1)  # type: ignore[misc]
-            else:
-                text = f"{text} {more}".strip()
-        if text:
-            found.append(HeaderCell(column, row, text))
-    return tuple(found)
-
-
-def _header_word(value: Value) -> str:
-    if isinstance(value, float) and value.is_integer():
-        return str(int(value))
-    return str(value)
-
-
-def _units_row(grid: Grid, row: int, headers: tuple[HeaderCell, ...]) -> int | None:
-    """The row below the header when all that is written in it are units."""
-    if row > grid.last_row or row in grid.comment_rows:
-        return None
-    values = [grid.value(row, header.column) for header in headers]
-    texts = [value.strip() if isinstance(value, str) else None for value in values]
-    if any(text is None for text in texts):
-        return None
-    units = [_unit_and_k(text)[0] for text in texts if text is not None and text not in _NO_UNIT]
-    if units and all(known_unit(unit) is not None and not looks_numeric(unit) for unit in units):
-        return row
-    return None
-
-
-def _with_unit(grid: Grid, header: HeaderCell, row: int) -> HeaderCell:
-    text, k = _unit_and_k(str(grid.value(row, header.column)).strip())
-    return header if text in _NO_UNIT else replace(header, unit=text, unit_row=row, k=k)
-
-
-def _unit_and_k(text: str) -> tuple[str, float | None]:
-    """The parts of a cell of a units row: "[GHz]", "dB (k=2)", "(± dB, k=2)"."""
-    unit, k = without_coverage(_bare(text))
-    return _bare(unit.removeprefix("±").removeprefix("+/-").strip()), k
-
-
-def _bare(text: str) -> str:
-    inside = text[1:-1]
-    is_bracketed = text[:1] + text[-1:] in ("[]", "()") and not set("[]()") & set(inside)
-    return inside.strip() if is_bracketed else text
 
 
 class _Body:

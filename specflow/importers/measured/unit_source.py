@@ -9,8 +9,9 @@ from dataclasses import dataclass
 import numpy as np
 
 from specflow.errors import UnitError
+from specflow.importers.measured.header_cells import HeaderCell
 from specflow.importers.measured.header_text import HeaderText, known_unit
-from specflow.importers.measured.tables import FoundTable, HeaderCell
+from specflow.importers.measured.tables import FoundTable
 from specflow.importers.readers import OddKind, OddRun, address
 from specflow.units import format_unit, parse_reading_with_unit, parse_unit
 

@@ -4,7 +4,17 @@ from __future__ import annotations
 
 from pathlib import Path
 
-from tests.importers.measured.make import book, low, measure, one_table, questions, rejected, taken, text
+from tests.importers.measured.make import (
+    SAID,
+    book,
+    low,
+    measure,
+    one_table,
+    questions,
+    rejected,
+    taken,
+    text,
+)
 
 
 def test_header_below_title_facts_and_blank_rows(tmp_path: Path) -> None:
@@ -209,3 +219,43 @@ def test_a_key_with_its_value_among_the_rows_is_asked_about(tmp_path: Path) -> N
 def test_items_and_modes_in_the_first_column_are_no_statements(tmp_path: Path) -> None:
     rows = [["DUT", "Gain (dB)"], ["LNA-1", 20], ["LNA-2", 19], ["DUT", "Gain (dB)"], ["LNA-1", 18]]
     assert low(taken(one_table(book(tmp_path / "a.xlsx", rows), stated={})), "Gain") == [20, 19, 18]
+
+
+def test_a_merged_header_is_read_with_the_row_that_tells_its_columns_apart(tmp_path: Path) -> None:
+    rows = [["Frequency", "Gain, dB"], ["GHz", "Min", "Typ", "Max"], [27.5, 19, 20, 21]]
+    path = book(tmp_path / "a.xlsx", rows, change=lambda sheet: sheet.merge_cells("B1:D1"))
+    asked = questions(one_table(path))
+    assert "'min' may mean the smallest of several readings, or a limit" in asked and "D1" in asked
+    said = SAID | {"column C": "gain in dB", "column B": "not read", "column D": "not read"}
+    table = taken(one_table(path, stated=said))
+    assert low(table, "Gain Typ") == [20] and table.rejected == ()
+
+
+def test_conditions_in_the_second_row_of_a_merged_header_come_in_by_a_pivot(tmp_path: Path) -> None:
+    rows = [
+        ["Frequency", "Output power at baseplate temperature"],
+        ["GHz", "-20 °C", "70 °C"],
+        [27.5, 31, 30],
+    ]
+    path = book(tmp_path / "a.xlsx", rows, change=lambda sheet: sheet.merge_cells("B1:C1"))
+    assert "'baseplate temperature -20' is a condition in the header" in questions(one_table(path))
+    mapping = """[[table]]
+    [table.pivot]
+    header = "Output power at baseplate temperature {temperature_baseplate} °C"
+    parameter = "output_power"
+    unit = "dBm"
+    units = { temperature_baseplate = "°C" }
+    """
+    table = taken(one_table(path, mapping=mapping))
+    assert table.columns is not None
+    assert list(table.columns.conditions.numeric["temperature_baseplate"]) == [-20, 70]
+
+
+def test_columns_named_by_items_are_asked_about_with_the_pivot_that_reads_them(tmp_path: Path) -> None:
+    rows = [["f (GHz)", "LNA-1 gain (dB)", "LNA-2 gain (dB)"], [27.5, 20, 19]]
+    path = book(tmp_path / "a.xlsx", rows)
+    assert 'header = "{item} gain (dB)"' in questions(one_table(path, stated={"block": "LNA"}))
+    mapping = '[[table]]\n[table.pivot]\nheader = "{item} gain (dB)"\nparameter = "gain"\nunit = "dB"\n'
+    table = taken(one_table(path, stated={"block": "LNA"}, mapping=mapping))
+    assert table.columns is not None
+    assert [table.columns.items.word(row) for row in range(2)] == ["LNA-1", "LNA-2"]
