@@ -14,8 +14,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.budgets.chain import Chain, ReadLine
+from specflow.budgets.paths import Law, gradient_of_positions, groups_of, joined
 from specflow.calculators.decibel import NEPER, T0
-from specflow.model.budget import Law
+from specflow.model.budget import Law as BudgetLaw
 from specflow.units import Kind, parse_unit
 
 Floats = NDArray[np.float64]
@@ -28,12 +29,14 @@ _IDEAL = {"iip3": math.inf, "iip2": math.inf, "ip1db": math.inf}
 class Figures:
     """What a law combines: ``arrays`` by figure, each (positions, ...); levels at the ports of whole positions.
 
-    ``start`` is the level at the input in dBm (or None); ``source_k`` the noise temperature of what feeds the chain.
+    ``start`` is the level at the input in dBm (or None); ``own`` are the figures of the positions
+    themselves, which differ from ``arrays`` where parallel paths stand as one stage (see ``paths``).
     """
 
     chain: Chain
     arrays: Mapping[str, Floats]
     start: Floats | None
+    own: Mapping[str, Floats]
 
     def __getitem__(self, figure: str) -> Floats:
         return self.arrays[figure]
@@ -64,7 +67,16 @@ def figures_of(
     if "noise_figure" in wanted:
         assert gain is not None
         arrays["noise_figure"] = _noise(chain, values, gain, shape, slice_)
-    return Figures(chain, arrays, _start(chain, arrays, shape, slice_))
+    start = _start(chain, arrays, shape, slice_)
+    groups = groups_of(chain.positions)
+    if not groups or gain is None:
+        return Figures(chain, arrays, start, arrays)
+    return Figures(chain, joined(arrays, groups, sum_law(chain)), start, arrays)
+
+
+def sum_law(chain: Chain) -> Law:
+    """Return how distortion products of one path add, as the calculators call it."""
+    return "coherent" if chain.budget.intermodulation == "coherent" else "noncoherent"
 
 
 def _length(chain: Chain, slice_: slice) -> int:
@@ -107,12 +119,12 @@ def of_elements(chain: Chain, read: ReadLine) -> tuple[float, float]:
         return 1.0, 0.0
     decibels = 10.0 * math.log10(count)
     independent = read.line.shared == "per element"
-    if law is Law.ROOT_SUM_OF_SQUARES:
+    if law is BudgetLaw.ROOT_SUM_OF_SQUARES:
         return (1.0 / math.sqrt(count) if independent else 1.0), 0.0
     unit = parse_unit(read.role.unit)
     if not unit.is_log:
         return float(count), 0.0
-    if law is Law.SUM:
+    if law is BudgetLaw.SUM:
         return 1.0, 0.0 if unit.kind is Kind.RATIO else decibels
     if unit.kind is Kind.RATIO:
         return 1.0, -decibels if independent else 0.0
@@ -185,6 +197,9 @@ def line_slopes(chain: Chain, values: Sequence[Floats], figures: Figures, gradie
     ``gradient`` holds the derivative of the result to each figure of each position.
     """
     shape = next(iter(figures.arrays.values())).shape[1:]
+    groups = groups_of(chain.positions)
+    if groups and "gain" in figures.arrays:
+        gradient = gradient_of_positions(figures.own, figures.arrays, groups, gradient, sum_law(chain))
     lossy = set(makes_noise_of_loss(chain))
     slopes = np.zeros((len(chain.lines), *shape))
     for number, read in enumerate(chain.lines):
@@ -204,12 +219,12 @@ def _through_gain(
 ) -> Floats:
     """What a gain moves besides itself: figures stated at the output of the position, and the noise of its loss."""
     row = read.row
-    moved = np.zeros(figures["gain"].shape[1:])
+    moved = np.zeros(figures.own["gain"].shape[1:])
     for other in chain.lines:
         if other.row == row and other.role.port == "output" and other.role.figure in gradient:
             moved = moved - gradient[other.role.figure][row]
     if is_lossy and "noise_figure" in gradient:
         part = relative_temperature(chain, row, slice(None), moved.ndim)
-        loss = np.exp(-figures["gain"][row] * NEPER)
+        loss = np.exp(-figures.own["gain"][row] * NEPER)
         moved = moved - gradient["noise_figure"][row] * loss * part / (1.0 + (loss - 1.0) * part)
     return np.asarray(moved)

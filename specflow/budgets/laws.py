@@ -62,7 +62,27 @@ def served(budget: Budget, snapshot: Snapshot) -> list[Requirement]:
             where=where,
             hint="load it, or correct its id",
         )
-    return [one for _, one in found if one is not None]
+    requirements = [one for _, one in found if one is not None]
+    for one in requirements:
+        _check_identity(budget, one)
+    return requirements
+
+
+def _check_identity(budget: Budget, requirement: Requirement) -> None:
+    """Only like compares with like: what both state of plane, statistic and polarisation is the same."""
+    own, other = budget.quantity, requirement.quantity
+    if code_key(own.parameter) != code_key(other.parameter):
+        return
+    for part in ("plane", "statistic", "polarisation"):
+        here, there = getattr(own, part), getattr(other, part)
+        if here and there and code_key(here) != code_key(there):
+            raise DocumentError(
+                f"the budget gives {own.parameter} with {part} {here}, the requirement is on {part} {there}",
+                where=f"budget {budget.id}, requirement {requirement.id}",
+                hint=f"carry the chain on to {there}, or serve a requirement on {here}"
+                if part == "plane"
+                else f"serve a requirement with {part} {here}",
+            )
 
 
 def _output(budget: Budget, name: str, dictionary: Dictionary) -> Output:
@@ -134,7 +154,7 @@ def _check_positions(chain: Chain, output: Output) -> None:
             if figure in figures or figure in _SOURCES:
                 continue
             if figure == "gain":
-                needed = row < last or output.last_gain
+                needed = row < last or output.last_gain or bool(position.path)
                 why = (
                     f"the positions behind it count through its gain, {chain.positions[-1].block} at the end"
                 )
@@ -201,6 +221,13 @@ def _check_passive_noise(chain: Chain) -> None:
 def _check_terms(chain: Chain) -> None:
     """Sums: one level at most where levels do not add; one contribution a position where they do not add plainly."""
     where = f"budget {chain.budget.id}"
+    paths = [row for row, position in enumerate(chain.positions) if position.path]
+    if paths:
+        raise CalculationError(
+            f"a {chain.budget.law} has no parallel paths: its positions are contributions side by side",
+            where=chain.place(paths[0]),
+            hint="leave the path out, or take a cascade",
+        )
     if chain.budget.law is Law.SUM:
         levels = [read for read in chain.lines if parse_unit(read.role.unit).kind is not Kind.RATIO]
         if len(levels) > 1 and parse_unit(levels[0].role.unit).is_log:

@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 
 from specflow.budgets.chain import Chain, Overrides, ReadLine, line_key, overridden
 from specflow.budgets.checks import check_line, check_readable
+from specflow.budgets.levels import Levels
 from specflow.budgets.line_values import line_values
 from specflow.budgets.own_conditions import (
     DRIVE,
@@ -48,17 +49,15 @@ def read_budget(
     maps = position_maps(budget, snapshot)
     plain = [own_conditions(one, required.columns) for one in maps]
     reader = _Reader(budget, snapshot, dictionary, required, values)
-    level = _input_level(budget, required, reader)
+    levels = Levels(budget.chain, _input_level(budget, required, reader))
     own: list[Columns] = []
     lines: list[ReadLine] = []
     for row, (condition_map, columns) in enumerate(zip(maps, plain, strict=True)):
-        here, read = _position(reader, row, condition_map, columns, level)
+        here, read = _position(reader, row, condition_map, columns, levels.before(row))
         own.append(here)
         lines.extend(read)
-        if level is not None:
-            level = level + _gain(read, required.size)
+        levels.passed(row, _gain(read, required.size))
     temperatures, notes = _temperatures(budget, own)
-    start = _input_level(budget, required, reader)
     return Chain(
         budget,
         required,
@@ -66,7 +65,7 @@ def read_budget(
         tuple(lines),
         temperatures,
         tuple(own),
-        start,
+        levels.start,
         (*notes, *_line_notes(budget)),
     )
 

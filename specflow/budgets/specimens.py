@@ -13,6 +13,7 @@ from specflow.budgets.chain import Chain, ReadLine
 from specflow.budgets.figures import figures_of
 from specflow.budgets.forms import AS_IT_IS
 from specflow.budgets.outputs import Output
+from specflow.budgets.paths import groups_of
 from specflow.budgets.spread import moves
 from specflow.calculators.cascade import cascade_results
 from specflow.model.budget import Law
@@ -96,7 +97,9 @@ def _straight(chain: Chain, outputs: Sequence[Output], ends: dict[int, Ends]) ->
 
     Such chains, which are most, need no copy between drawing and the law. None where something has to be made first.
     """
-    if chain.budget.law is not Law.CASCADE or {output.parameter for output in outputs} != set(_FUSED) or ends:
+    if groups_of(chain.positions) or chain.budget.law is not Law.CASCADE:
+        return None
+    if {output.parameter for output in outputs} != set(_FUSED) or ends:
         return None
     rows: list[list[int]] = []
     for figure in _FUSED:

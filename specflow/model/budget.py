@@ -34,7 +34,8 @@ class Law(StrEnum):
 class BudgetPosition(Document):
     """A place in the order of a budget, and the block that stands there.
 
-    ``count`` identical elements work in parallel, fed by an equal share each and combined in phase without loss (losses
+    Neighbouring positions that name a ``path`` are parallel paths, one chain for each name, fed and combined like
+    elements. ``count`` identical elements work in parallel, fed by an equal share each and combined in phase without loss (losses
     of dividers and combiners are positions of their own). ``passive`` positions have no gain above 0 dB and make the
     noise of their loss at their physical temperature. ``condition_map`` serves where the block's own map does not fit
     this place.
@@ -43,6 +44,7 @@ class BudgetPosition(Document):
     order: int
     block: Code
     name: str = ""
+    path: str = ""
     count: int = Field(default=1, ge=1)
     passive: bool = False
     condition_map: Code | None = None

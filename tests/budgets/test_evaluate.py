@@ -7,6 +7,7 @@ import pytest
 
 from specflow.budgets import evaluate_budget
 from specflow.conditions import parse_map_entry
+from specflow.limits import parse_limit
 from specflow.model.budget import Budget, Reserve
 from specflow.model.budget_line import ConditionTable, Drift
 from specflow.model.conditions import ConditionMap, Span
@@ -234,3 +235,35 @@ def test_power_sum_of_two_carriers() -> None:
     )
     result = result_of(budget, limit=at_most(80, "dBm")).of("eirp").result
     assert result - 30.0 == pytest.approx(47.4, abs=0.05)
+
+
+def test_a_growth_allowance_worsens_a_figure_only_where_it_is_asked_for() -> None:
+    stage = {"block": "A", "gain": 10.0, "noise_figure": 2.0}
+    asked = a_chain({**stage, "more": {"noise_figure": {"growth": 0.3}, "gain": {"growth": 1.0}}})
+    result = result_of(asked)
+    assert result.of("noise_figure").result == pytest.approx(2.3)
+    assert result.figures["gain"][0] == pytest.approx(9.0)
+    assert any("growth allowance of 0.3" in note for note in result.notes)
+    assert result_of(a_chain(stage)).of("noise_figure").result == pytest.approx(2.0)
+
+
+def test_what_is_assumed_is_said() -> None:
+    budget = a_chain(*POZAR_10_2, parameter="ip1db")
+    lines = tuple(
+        a_budget_line(order, block, "ip1db", 0.0, unit="dBm") for order, block in ((1, "AMP"), (3, "MIX"))
+    )
+    notes = result_of(
+        budget.model_copy(update={"lines": (*budget.lines, *lines)}), limit=at_least(-99, "dBm")
+    ).notes
+    assert any("approximation" in note for note in notes)
+    assert any("290 K, no temperature is stated" in note for note in notes)
+
+
+def test_a_limit_that_depends_on_conditions_is_held_at_each_of_them() -> None:
+    limit = parse_limit("by frequency[GHz] (27.5: <= 2 dB; 28.75: <= 3 dB; 30: <= 4 dB)")
+    budget = a_chain({"block": "A", "gain": 10.0, "noise_figure": 2.5}, conditions="CS")
+    served = (
+        result_of(budget, a_conditions_set("CS", a_dimension()), limit=limit).of("noise_figure").served[0]
+    )
+    assert served.margin == pytest.approx([-0.5, 0.5, 1.5])
+    assert served.worst == 0 and served.closes is False

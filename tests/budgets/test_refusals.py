@@ -140,6 +140,15 @@ def test_a_limit_in_a_unit_that_the_result_cannot_have() -> None:
     assert "limit is in dBm" in refusal(a_chain(*POZAR_10_2), requirements=[requirement]).message
 
 
+def test_a_requirement_at_another_plane_than_the_budget() -> None:
+    budget = a_chain(*POZAR_10_2, quantity=a_quantity("noise_figure", plane="LNA input"))
+    requirement = a_requirement(
+        "R-1", quantity=a_quantity("noise_figure", plane="array face"), limit=at_most(3), conditions=None
+    )
+    error = refusal(budget, requirements=[requirement])
+    assert "plane LNA input" in error.message and "array face" in error.hint
+
+
 def test_a_table_that_does_not_reach_a_required_point_says_what_it_has_and_what_is_needed() -> None:
     budget = a_chain({"block": "A", "gain": by_frequency()}, parameter="gain", conditions="CS")
     error = refusal(budget, a_conditions_set("CS", a_dimension("frequency", "GHz", values=(17.7, 20.2))))

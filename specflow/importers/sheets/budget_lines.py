@@ -67,6 +67,14 @@ LAYOUT = SheetLayout(
             guidance="Where one block stands at several places. Once a position.",
         ),
         SheetColumn(
+            key="path",
+            title="Path",
+            aliases=("Parallel path",),
+            field="positions",
+            guidance="Neighbouring positions that name paths are parallel, a chain for each name. Once a position.",
+            width=10,
+        ),
+        SheetColumn(
             key="count",
             title="N in parallel",
             aliases=("Count", "N", "Elements"),
@@ -294,8 +302,9 @@ def _order(row: SheetRow, text: str) -> int | None:
 def _say(row: SheetRow, place: _Place, intake: Intake) -> None:
     """Note what a row says of its position; another statement on a later row is refused."""
     said: dict[str, object] = {}
-    if row.text("name"):
-        said["name"] = row.text("name")
+    for column in ("name", "path"):
+        if row.text(column):
+            said[column] = row.text(column)
     if row.text("count"):
         said["count"] = row.whole("count", 1, least=1)
     if row.text("passive"):
