@@ -11,7 +11,8 @@ from specflow.reports.figures import rounded
 SIGNS = {"signal": "●", "noise": "○", "bound": "▕"}
 _EIGHTHS = " ▏▎▍▌▋▊▉█"
 _HEIGHTS = " ▁▂▃▄▅▆▇█"
-_MOST_NAME = 34
+_LEAST_NAME, _MOST_NAME = 6, 34
+_LEAST_PLOT = 16
 _TALL = 8
 
 
@@ -41,7 +42,8 @@ def picture_lines(picture: Picture, width: int = 78) -> list[str]:
     return [picture.title, *drawn]
 
 
-def _short(name: str, width: int = _MOST_NAME) -> str:
+def _short(name: str, room: int) -> str:
+    width = min(max(room, _LEAST_NAME), _MOST_NAME)
     return name if len(name) <= width else name[: width - 1] + "…"
 
 
@@ -50,21 +52,23 @@ def _short(name: str, width: int = _MOST_NAME) -> str:
 
 def level_lines(picture: LevelDiagram, width: int) -> list[str]:
     """Return one line a station: its values, then their marks on a common axis."""
-    names = [_short(name) for name in picture.stations]
-    wide = max(map(len, names))
     columns = [max(map(len, one.texts)) for one in picture.series]
-    left = wide + sum(column + 2 for column in columns) + 2
-    scale = Scale(*picture.span, width=max(width - left, 16))
+    values = sum(column + 2 for column in columns) + 2
+    names = [_short(name, width - values - _LEAST_PLOT) for name in picture.stations]
+    wide = max(map(len, names))
+    left = wide + values
+    scale = Scale(*picture.span, width=max(width - left, _LEAST_PLOT))
     ends = f"{rounded(scale.low, 1)}", f"{rounded(scale.high, 1)} {picture.unit}"
     axis = ends[0] + ends[1].rjust(scale.width - len(ends[0]))
     lines = [" " * left + axis]
     for place, name in enumerate(names):
-        values = "".join(
+        numbers = "".join(
             f"  {one.texts[place].rjust(column)}" for one, column in zip(picture.series, columns, strict=True)
         )
-        lines.append(f"{name.ljust(wide)}{values}  {_station(picture.series, place, scale)}".rstrip())
-    lines.append("  ".join(f"{SIGNS[one.look]} {one.name}" for one in picture.series))
-    return lines
+        lines.append(f"{name.ljust(wide)}{numbers}  {_station(picture.series, place, scale)}".rstrip())
+    legend = [f"{SIGNS[one.look]} {one.name}" for one in picture.series]
+    together = "  ".join(legend)
+    return [*lines, together] if len(together) <= width else [*lines, *legend]
 
 
 def _station(series: Sequence[Series], place: int, scale: Scale) -> str:
@@ -86,9 +90,10 @@ def _station(series: Sequence[Series], place: int, scale: Scale) -> str:
 
 def bar_lines(picture: ContributionBars, width: int) -> list[str]:
     """Return one line a contribution: its name, its part, and a bar of that length."""
-    names = [_short(bar.name) for bar in picture.bars]
-    wide, text = max(map(len, names)), max(len(bar.text) for bar in picture.bars)
-    room = max(width - wide - text - 4, 10)
+    text = max(len(bar.text) for bar in picture.bars)
+    names = [_short(bar.name, width - text - 4 - _LEAST_PLOT) for bar in picture.bars]
+    wide = max(map(len, names))
+    room = max(width - wide - text - 4, _LEAST_PLOT)
     most = max(bar.part for bar in picture.bars) or 1.0
     return [
         f"{name.ljust(wide)}  {bar.text.rjust(text)}  {_bar(max(bar.part, 0.0) / most * room)}".rstrip()

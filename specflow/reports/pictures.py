@@ -126,12 +126,15 @@ def _reach(outcome: BudgetOutcome, one: QuantityOutcome, place: int, named: Name
         f"at {outcome.places[place]}",
         words=f"Slope times tolerance, the larger side; elements that move each by itself average. "
         f"The largest is {largest[0]} with "
-        f"{with_unit(largest[1], unit)}.",
+        f"{_reach_text(largest[1], unit)}.",
         bars=tuple(
-            Bar(name=name, part=reach / whole, text=with_unit(float(f"{reach:.2g}"), unit))
-            for name, reach in reaches
+            Bar(name=name, part=reach / whole, text=_reach_text(reach, unit)) for name, reach in reaches
         ),
     )
+
+
+def _reach_text(reach: float, unit: str) -> str:
+    return with_unit(reach, unit) if reach >= 1 else f"{reach:.2g} {unit}".strip()
 
 
 def _bar(name: str, part: float) -> Bar:

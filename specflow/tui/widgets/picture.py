@@ -10,7 +10,7 @@ from textual.widget import Widget
 from specflow.model.picture import Picture
 from specflow.reports.picture_text import SIGNS, picture_lines
 
-LEAST_WIDTH = 44
+LEAST_WIDTH = 48
 _STYLES = {
     SIGNS["signal"]: "$primary",
     SIGNS["noise"]: "$warning",
