@@ -33,8 +33,8 @@ BuiltIn = Mapping[str, Collection[str]]
 class KnownServed:
     """One requirement with what is known.
 
-    ``served`` is held at the values known; ``spread`` (n,) is the standard uncertainty of the result in the unit of the
-    law, of ``freedom`` (n,) effective degrees; ``predicted`` (n,) the margin kept with ``confidence``, one-sided;
+    ``served`` is held at the values known; ``spread`` (n,) is the standard uncertainty of the result in the unit of
+    the margin, of ``freedom`` (n,) effective degrees; ``predicted`` (n,) the margin kept with ``confidence``, one-sided;
     ``probability`` (n,) that the limit and the reserve are kept at that place. Never multiply these over places: one
     system meets all places or does not.
     """
@@ -145,16 +145,22 @@ def _served(
     reach = one_sided_quantile(confidence, degrees) * spread
     value = result.of(target.output.parameter).result
     predicted = np.minimum(target.bar.margin(value - reach), target.bar.margin(value + reach))
-    return KnownServed(one, spread, degrees, predicted, _probability(target, value, spread, degrees))
+    in_limit = spread * _rise(target, value)
+    return KnownServed(one, in_limit, degrees, predicted, _probability(target, value, in_limit, degrees))
+
+
+def _rise(target: Target, value: Floats) -> Floats:
+    """Return by how much the result in the unit of the limit moves with the result in that of the law."""
+    step = np.maximum(np.abs(value), 1.0) * 1e-6
+    convert = target.bar.convert
+    return np.abs(convert(value + step) - convert(value - step)) / (2.0 * step)
 
 
 def _probability(target: Target, value: Floats, spread: Floats, degrees: Floats) -> Floats:
     """Return the probability (n,) that the limit less the reserve is kept, NaN where nothing is required."""
     bar = target.bar
     shown = bar.convert(value)
-    step = np.maximum(np.abs(value), 1.0) * 1e-6
-    rise = (bar.convert(value + step) - bar.convert(value - step)) / (2.0 * step)
-    scale = np.maximum(np.abs(rise) * spread, 1e-300)
+    scale = np.maximum(spread, 1e-300)
     below = probability_below((bar.upper - bar.reserve - shown) / scale, degrees)
     above = probability_below((shown - bar.lower - bar.reserve) / scale, degrees)
     return np.where(bar.required, np.maximum(below + above - 1.0, 0.0), np.nan)

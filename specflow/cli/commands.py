@@ -37,6 +37,7 @@ COMMANDS = (
     CommandEntry("budget", "Show budgets: along the chain, shares, slopes, margins."),
     CommandEntry("allocate", "Allocate a budget over its blocks."),
     CommandEntry("attach", "Attach measurement files."),
+    CommandEntry("known", "Evaluate a budget with the best that is known of each block."),
     CommandEntry("status", "Show what is proved, failing and missing."),
     CommandEntry("check", "List the findings of the rules."),
     CommandEntry("trace", "Walk from a requirement up to the system and down to the cell."),

@@ -1,0 +1,162 @@
+"""Budgets as known through the store: which evidence serves which place, serial as built, recording."""
+
+from __future__ import annotations
+
+from datetime import date
+from pathlib import Path
+
+import pytest
+
+from specflow.errors import DocumentError
+from specflow.model.base import Document
+from specflow.model.block import HardwareType
+from specflow.model.evidence import EvidenceColumns, EvidenceTable
+from specflow.model.requirement import Method
+from specflow.store import ProjectStore
+from specflow.workflows.allocate import accept_allocation, preview_allocation
+from specflow.workflows.as_known import known_budget
+from specflow.workflows.evaluate_project import evaluate_project
+from specflow.workflows.known_tables import known_as_json, known_tables
+from specflow.workflows.record_known import record_known
+from tests.budgets import receiver
+from tests.builders import (
+    a_quantity,
+    a_value_column,
+    adding,
+    an_evidence_file,
+    an_evidence_table,
+    an_item,
+    some_columns,
+    some_evidence,
+)
+
+AS_OF = date(2026, 6, 1)
+
+
+def noise_table(id: str, block: str, **fields: object) -> EvidenceTable:
+    """Return a table of noise figures over temperature."""
+    column = a_value_column("NF", quantity=a_quantity("noise_figure"))
+    return an_evidence_table(id, block=block, values=(column,), conditions=(), **fields)
+
+
+def over_temperature(*values: float, item: str = "LNA-1", u: float | None = None) -> EvidenceColumns:
+    """Return readings at -30, 20 and 55 °C."""
+    columns = some_columns(temperature_ambient=[-30.0, 20.0, 55.0][: len(values)])
+    return some_evidence({"NF": values}, conditions=columns, items=item, u=u)
+
+
+def with_evidence(
+    store: ProjectStore, documents: list[Document], columns: dict[str, EvidenceColumns]
+) -> None:
+    """Add evidence to the project."""
+    store.apply(adding(an_evidence_file(), *documents), columns=columns, by="A. Invented")
+
+
+def items() -> list[Document]:
+    """Return two amplifiers, one of them built into a system."""
+    return [
+        an_item("SYS-1", block="SYS"),
+        an_item("LNA-1", hardware_type=HardwareType.QUALIFICATION, built_into="SYS-1"),
+        an_item("LNA-2", hardware_type=HardwareType.QUALIFICATION),
+    ]
+
+
+def test_evidence_is_used_place_by_place_in_the_order_of_rank(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        documents = [
+            *items(),
+            noise_table("EV-1", "LNA", rows=2),
+            noise_table("EV-2", "LNA", method=Method.ANALYSIS, simulation_model="m", rows=3),
+        ]
+        columns = {"EV-1": over_temperature(1.0, 1.3), "EV-2": over_temperature(0.8, 0.9, 1.1, item="")}
+        with_evidence(store, documents, columns)
+        found = known_budget(store, "RX", AS_OF)
+    line = next(one for one in found.known.lines if one.read.line.parameter == "noise_figure")
+    assert list(line.value) == pytest.approx([1.0, 1.3, 1.1])
+    assert line.source_words(0) == "test on qualification or production hardware: EV-1 NF, 1 item"
+    assert line.source_words(2) == "analysis: EV-2 NF"
+    assert set(found.tables) == {"EV-1", "EV-2"}
+
+
+def test_what_may_not_count_is_left_out_and_said(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        with_evidence(
+            store,
+            [*items(), noise_table("EV-1", "LNA", provisional=True)],
+            {"EV-1": over_temperature(1.0, 1.3, 1.4)},
+        )
+        found = known_budget(store, "RX", AS_OF)
+    assert not found.tables
+    assert any("not accepted yet" in note for note in found.notes)
+
+
+def test_one_system_as_built_takes_its_own_amplifier(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        documents = [*items(), noise_table("EV-1", "LNA"), noise_table("EV-2", "LNA")]
+        columns = {
+            "EV-1": over_temperature(1.0, 1.1, 1.2, item="LNA-1", u=0.05),
+            "EV-2": over_temperature(2.0, 2.1, 2.2, item="SN-LNA-2"),
+        }
+        with_evidence(store, documents, columns)
+        of_type = known_budget(store, "RX", AS_OF)
+        built = known_budget(store, "RX", AS_OF, serial="sn-sys-1")
+        with pytest.raises(DocumentError, match="nothing is recorded as built into LNA-2"):
+            known_budget(store, "RX", AS_OF, serial="LNA-2")
+        with pytest.raises(DocumentError, match="there is no item"):
+            known_budget(store, "RX", AS_OF, serial="X")
+    typical, own = (
+        next(one for one in each.known.lines if one.read.line.parameter == "noise_figure")
+        for each in (of_type, built)
+    )
+    assert list(typical.value) == pytest.approx([1.5, 1.6, 1.7]) and typical.spread[0] > 0.5
+    assert list(own.value) == pytest.approx([1.0, 1.1, 1.2]) and own.spread[0] == 0
+    assert own.common[0] == pytest.approx(0.05)
+    assert any("no specimen of MIX is recorded as built into SYS-1" in note for note in built.notes)
+
+
+def test_a_block_that_misses_is_judged_by_the_system(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        accept_allocation(store, preview_allocation(store, "RX"), by="A. Invented")
+        with_evidence(
+            store,
+            [*items(), noise_table("EV-1", "LNA"), noise_table("EV-3", "MIX")],
+            {"EV-1": over_temperature(2.4, 2.5, 2.8), "EV-3": over_temperature(5.0, 5.0, 5.0, item="")},
+        )
+        found = known_budget(store, "RX", AS_OF)
+    (miss,) = found.reallocation.misses
+    assert miss.line == "LNA noise_figure" and "+55 °C" in miss.words
+    assert [cost.requirement for cost in miss.costs] == ["SYS-NF"]
+    assert {one.line for one in found.reallocation.slack} == {"MIX noise_figure"}
+    told = known_as_json(found)
+    assert told["misses"][0]["source"].endswith("EV-1 NF, 1 item")
+    assert [one.key for one in known_tables(found)][:3] == ["margins", "sources", "misses"]
+
+
+def test_the_result_is_recorded_as_analysis_with_its_sources(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        with_evidence(
+            store, [*items(), noise_table("EV-1", "LNA")], {"EV-1": over_temperature(1.0, 1.1, 1.2, u=0.05)}
+        )
+        found = known_budget(store, "RX", AS_OF)
+        tables = record_known(store, found, by="A. Invented")
+        evaluation = evaluate_project(store, AS_OF)
+        snapshot = evaluation.snapshot
+        first = snapshot.find(EvidenceTable, tables[0])
+        assert first is not None
+        content = store.file_bytes(first.file)
+    assert tables == ("EV-2", "EV-3")
+    assert first.method is Method.ANALYSIS and "EV-1" in first.hardware_note
+    assert content is not None and "EV-1 NF" in content.decode()
+    assert first.id not in evaluation.results.unmatched
+    status = evaluation.results.of("SYS-NF")
+    assert status.k == 0 and status.n == 3  # an analysis shows progress and never closes a test
+    assert status.activities[0].items
+    reading = next(iter(status.activities[0].items.values()))
+    assert list(reading.value_low) == pytest.approx(list(found.known.served[0].served.result))
+
+
+def test_nothing_known_is_nothing_to_record(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        found = known_budget(store, "RX", AS_OF)
+        with pytest.raises(DocumentError, match="no result to record"):
+            record_known(store, found, by="A. Invented")
