@@ -163,7 +163,13 @@ def monte_carlo(
         )
     prepared = prepare(budget, snapshot, dictionary, values=values)
     check_bounds(prepared.chain)
-    draws = draws_of(prepared.chain, seed)
+    return drawn_result(prepared, draws_of(prepared.chain, seed), trials, seed, block, threads)
+
+
+def drawn_result(
+    prepared: Prepared, draws: Draws, trials: int, seed: int, block: int = _BLOCK, threads: int = 1
+) -> MonteCarloResult:
+    """Return the result of a budget that was read, from streams of deviations."""
     run = _Run(prepared, draws, trials, block, threads)
     return _result(run, run.tally(), seed)
 
