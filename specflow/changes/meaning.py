@@ -251,6 +251,19 @@ ANYWHERE: Mapping[str, Words] = {
     "effective": _day,
 }
 
+
+def _budget_lines(difference: Difference) -> str:
+    """Name the lines that were added, taken out or changed."""
+    before, after = ({line.place: line for line in lines} for lines in (difference.before, difference.after))
+    words = {
+        "added": [place for place in after if place not in before],
+        "taken out": [place for place in before if place not in after],
+        "changed": [place for place in after if place in before and after[place] != before[place]],
+    }
+    parts = [f"{', '.join(places)} {what}" for what, places in words.items() if places]
+    return "; ".join(parts) or "lines in another order"
+
+
 #: (noun, field) → the words of its difference.
 MEANINGS: Mapping[tuple[str, str], Words] = {
     ("requirement", "limit"): _limit,
@@ -268,5 +281,6 @@ MEANINGS: Mapping[tuple[str, str], Words] = {
     ("uncertainty", "residual"): _value("residual_unit"),
     ("budget", "requirements"): _joined_and_left("now serves", "no longer serves"),
     ("budget", "quantity"): _quantity,
+    ("budget", "lines"): _budget_lines,
     ("evidence_table", "digest"): lambda difference: "other values than before",
 }

@@ -251,6 +251,9 @@ def test_of_a_list_only_the_members_that_differ_are_told() -> None:
     (field,) = only_change(known, known.model_copy(update={"lines": lines})).fields
     assert "20" in field.before and "19.5" in field.after
     assert "MIX" not in field.before + field.after
+    assert field.meaning == "LNA gain (position 1) changed"
+    (field,) = only_change(known, known.model_copy(update={"lines": known.lines[1:]})).fields
+    assert field.meaning == "LNA gain (position 1) taken out"
     planes = only_change(
         a_block(planes=(Plane(name="in"),)), a_block(planes=(Plane(name="in"), Plane(name="out")))
     )
