@@ -67,7 +67,15 @@ class Grid:
         self, row: int, column: int, term: Term, look: CellLook = CellLook.FORMULA, format: str = "0.0000"
     ) -> Term:
         """Put a formula with its value; one without a finite value shows "no bound" instead."""
-        cell = FormulaCell(formula=f"={term.text}", look=look, format=format)
-        value = {"number": term.value} if math.isfinite(term.value) else {"text": "no bound"}
-        self.put(row, column, cell.model_copy(update=value))
+        is_finite = math.isfinite(term.value)
+        # What is made of an intercept without bound has none either; a program would show an error instead.
+        text = term.text if is_finite else f'IFERROR({term.text},"no bound")'
+        cell = FormulaCell(
+            formula=f"={text}",
+            number=term.value if is_finite else None,
+            text="" if is_finite else "no bound",
+            look=look,
+            format=format,
+        )
+        self.put(row, column, cell)
         return Term(cell_name(row, column, fixed=True), term.value)

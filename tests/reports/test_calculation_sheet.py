@@ -19,7 +19,8 @@ NAMED = titles(receiver.DICTIONARY)
 NOMINAL = HowToCompute(ways=())
 ALL = tuple(receiver.UNITS)
 FORMULA = re.compile(
-    r'=(?:SUM|SUMSQ|SUMPRODUCT|LOG10|SQRT|EXP|RADIANS|IF|MIN|"no bound"|\$[A-Z]+\$\d+|\d+(?:\.\d+)?(?:e-?\d+)?|[-+*/^(),:=])+'
+    r'=(?:SUM|SUMSQ|SUMPRODUCT|LOG10|SQRT|EXP|RADIANS|IF|IFERROR|MIN|"no bound"|\$[A-Z]+\$\d+|'
+    r"\d+(?:\.\d+)?(?:e-?\d+)?|[-+*/^(),:=])+"
 )
 
 

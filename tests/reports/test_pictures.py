@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from typing import Any, TypeVar
+
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
@@ -13,7 +15,6 @@ from specflow.model.picture import (
     Distribution,
     LevelDiagram,
     Mark,
-    Picture,
     Series,
 )
 from specflow.reports.budget import titles
@@ -25,13 +26,14 @@ from tests import receiver
 from tests.budgets.chains import a_chain
 from tests.builders import a_requirement
 
+P = TypeVar("P", LevelDiagram, ContributionBars, Distribution)
 NAMED = titles(receiver.DICTIONARY)
 OUTCOME = receiver.outcome()
 PICTURES = budget_pictures(OUTCOME, OUTCOME.place, NAMED)
 
 
-def of(kind: type[Picture]) -> list[Picture]:  # type: ignore[valid-type]
-    return [one for one in PICTURES if isinstance(one, kind)]  # type: ignore[arg-type]
+def of(kind: type[P]) -> list[P]:
+    return [one for one in PICTURES if isinstance(one, kind)]
 
 
 def test_a_budget_gives_levels_contributions_reaches_and_distributions() -> None:
@@ -75,7 +77,7 @@ def test_contributions_are_the_shares_of_the_table() -> None:
 def test_elements_that_move_each_by_itself_reach_less_far() -> None:
     def reach(shared: str) -> float:
         stages = ({"block": "A", "gain": 10.0, "noise_figure": 2.0, "count": 16},)
-        more = {"conditions": None, "requirements": ("R-noise_figure",)}
+        more: dict[str, Any] = {"conditions": None, "requirements": ("R-noise_figure",)}
         budget = receiver.tolerances(a_chain(*stages, **more))
         lines = tuple(one.model_copy(update={"shared": shared}) for one in budget.lines)
         budget = budget.model_copy(update={"lines": lines, "conditions": "CS-AIR"})
@@ -129,8 +131,12 @@ def test_bars_are_as_long_as_their_parts() -> None:
     bars = ContributionBars(
         title="t",
         words="w",
-        bars=(Bar(name="A", part=0.5, text="50 %"), Bar(name="B", part=0.25, text="25 %"), Bar(name="C", part=0, text="0 %")),
-    )  # fmt: skip
+        bars=(
+            Bar(name="A", part=0.5, text="50 %"),
+            Bar(name="B", part=0.25, text="25 %"),
+            Bar(name="C", part=0, text="0 %"),
+        ),
+    )
     first, second, third = (line.count("█") for line in picture_lines(bars, 60)[1:])
     assert abs(first - 2 * second) <= 1 and third == 0
 
