@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
+from functools import lru_cache
 
 from specflow.model.verdict import CloseOut, Compliance, Label, Verdict
 from specflow.verification.compliance import Facts, compliance
@@ -51,8 +52,12 @@ _ORDER = [(one, _APPLIES[one]) for one in Label]
 _AFTER_MARGINAL = _ORDER[list(Label).index(Label.MARGINAL) + 1 :]
 
 
+@lru_cache(maxsize=1024)
 def label_and_close_out(facts: Facts) -> tuple[Label, CloseOut, str]:
-    """Return the label, and open or closed with the reason; a marginal result is shown and keeps no row open."""
+    """Return the label, and open or closed with the reason; a marginal result is shown and keeps no row open.
+
+    Remembered by the facts: of most requirements they are the same few.
+    """
     first = _first(facts, _ORDER)
     reason = first if first is not Label.MARGINAL else _first(facts, _AFTER_MARGINAL)
     return (first, *_close_out(facts, reason))

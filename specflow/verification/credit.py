@@ -106,7 +106,8 @@ def _spread(
 ) -> Credit:
     """Give every pair what its source and item have; ``kinds`` holds rank, credit, staleness, items fastest."""
     if records.all_accepted and len(set(kinds)) == 1:
-        return replace(_uniform(len(record), *kinds[0]), why=why)
+        same = _uniform(len(record), *kinds[0])
+        return replace(same, why=why) if why else same
     kind = records.item[record]
     if len(records.sources) > 1:
         kind = kind + records.source[record] * len(records.items)

@@ -7,7 +7,7 @@ was stale and has been re-verified, or a named successor has measured the same p
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field
 from typing import TypeVar
 
 import numpy as np
@@ -56,7 +56,7 @@ class Bench:
     together: bool = False
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(slots=True)
 class Grid:
     """Readings laid out over items × points: reading ``pair[i]`` is evidence of item ``item[i]`` in cell ``cell[i]``.
 
@@ -69,7 +69,7 @@ class Grid:
     item: Rows
     items: int
     cell: Rows
-    weighing: Flags
+    weighing: Flags = field(init=False)
 
     def of(self, values: NDArray[T]) -> NDArray[T]:
         """Return values of the readings, one for each reading and item."""
@@ -86,8 +86,9 @@ def lay_out(bench: Bench, *, together: bool) -> tuple[Grid, Sequence[str]]:
     names, pair, item = _by_item(bench, together or bench.together)
     point = bench.readings.point if pair is None else bench.readings.point[pair]
     cell = item * bench.points.size + point
-    grid = Grid(bench, pair, item, len(names), cell, np.zeros(0, bool))
-    return replace(grid, weighing=_weighing(grid)), names
+    grid = Grid(bench, pair, item, len(names), cell)
+    grid.weighing = _weighing(grid)
+    return grid, names
 
 
 def _by_item(bench: Bench, together: bool) -> tuple[Sequence[str], Rows | None, Rows]:
