@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 from specflow.budgets.cascade_level import gain, gain_so_far, level, level_so_far
 from specflow.budgets.cascade_noise import floor, floor_slopes, floor_so_far
 from specflow.budgets.figures import Figures
+from specflow.calculators.adjacent_channel import channel_gap_constant
 from specflow.calculators.compression import cascade_ip1db
 from specflow.calculators.intercept_cascade import (
     Law,
@@ -147,6 +148,32 @@ def back_off_slopes(figures: Figures) -> Gradient:
     """Derivatives to each figure of each position."""
     found = OP1DB[2](figures)
     return {**found, "gain": found["gain"] - 1.0, "source_level": -np.ones_like(figures["gain"])}
+
+
+def aclr(figures: Figures) -> Floats:
+    """Adjacent-channel leakage ratio of a noise-like signal in dB, third order only."""
+    return 2.0 * (OIP3[0](figures) - level(figures)) + _channel_gap(figures)
+
+
+def aclr_so_far(figures: Figures) -> Floats:
+    """The same behind each position."""
+    return 2.0 * (OIP3[1](figures) - level_so_far(figures)) + _channel_gap(figures)
+
+
+def aclr_slopes(figures: Figures) -> Gradient:
+    """Derivatives to each figure of each position."""
+    found = OIP3[2](figures)
+    return {
+        "iip3": 2.0 * found["iip3"],
+        "gain": 2.0 * (found["gain"] - 1.0),
+        "source_level": np.full_like(figures["gain"], -2.0),
+    }
+
+
+def _channel_gap(figures: Figures) -> Floats:
+    budget = figures.chain.budget
+    assert budget.bandwidth_hz is not None and budget.channel_spacing_hz is not None  # asked for
+    return channel_gap_constant(budget.bandwidth_hz, budget.channel_spacing_hz)
 
 
 def sfdr(figures: Figures) -> Floats:

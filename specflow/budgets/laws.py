@@ -13,6 +13,7 @@ from specflow.budgets.cascade import CASCADE
 from specflow.budgets.chain import Chain
 from specflow.budgets.outputs import Output
 from specflow.budgets.sums import sum_output
+from specflow.calculators.passive_loss import passive_noise_figure
 from specflow.errors import CalculationError, DocumentError
 from specflow.model.base import code_key
 from specflow.model.budget import Budget, Law
@@ -178,6 +179,7 @@ def _check_asked(chain: Chain, output: Output) -> None:
         "input level": chain.input_level is not None,
         "noise source": budget.noise_source is not None or "source_k" in figures,
         "bandwidth": budget.bandwidth_hz is not None,
+        "channel spacing": budget.channel_spacing_hz is not None,
         "antenna gain": "antenna_gain" in figures,
         "signal-to-noise ratio": "snr" in figures,
     }
@@ -186,6 +188,7 @@ def _check_asked(chain: Chain, output: Output) -> None:
         "in the conditions set",
         "noise source": "give the budget a noise source, or the antenna a line antenna_noise_temperature",
         "bandwidth": "give the budget its noise bandwidth",
+        "channel spacing": "give the budget the spacing of the adjacent channel",
         "antenna gain": "give the antenna a line antenna_gain",
         "signal-to-noise ratio": "give a line snr: the ratio needed, with implementation loss",
     }
@@ -198,8 +201,6 @@ def _check_asked(chain: Chain, output: Output) -> None:
 
 def _check_passive_noise(chain: Chain) -> None:
     """A passive loss makes at least the noise of its loss: a noise figure below that is a mistake."""
-    from specflow.calculators.passive_loss import passive_noise_figure
-
     for read in chain.lines:
         if read.role.figure != "noise_figure" or not chain.positions[read.row].passive:
             continue

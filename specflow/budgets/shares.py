@@ -37,6 +37,7 @@ _SHARED = {
     "refsens": "system noise temperature",
     "iip3": "third-order distortion",
     "oip3": "third-order distortion",
+    "aclr": "third-order distortion",
     "iip2": "second-order distortion",
     "oip2": "second-order distortion",
     "ip1db": "compression",

@@ -34,9 +34,9 @@ class Law(StrEnum):
 class BudgetPosition(Document):
     """A place in the order of a budget, and the block that stands there.
 
-    Neighbouring positions that name a ``path`` are parallel paths, one chain for each name, fed and combined like
-    elements. ``count`` identical elements work in parallel, fed by an equal share each and combined in phase without loss (losses
-    of dividers and combiners are positions of their own). ``passive`` positions have no gain above 0 dB and make the
+    ``count`` identical elements work in parallel, fed by an equal share each and combined in phase without loss (losses
+    of dividers and combiners are positions of their own). Neighbouring positions that name a ``path`` are parallel
+    paths, one chain for each name, fed and combined in the same way. ``passive`` positions have no gain above 0 dB and make the
     noise of their loss at their physical temperature. ``condition_map`` serves where the block's own map does not fit
     this place.
     """
@@ -84,7 +84,8 @@ class Budget(Document):
 
     ``quantity`` is what the budget is of; served requirements may be on other quantities that the law gives too.
     ``input_level`` drives the chain (a level at ``plane_in``); ``noise_source`` is the temperature in K of what feeds
-    it, ``bandwidth_hz`` the noise bandwidth. ``intermodulation`` chooses the sum of distortion products: coherent is
+    it. ``bandwidth_hz`` is the noise bandwidth, or the width of a noise-like signal whose adjacent channel lies
+    ``channel_spacing_hz`` away. ``intermodulation`` chooses the sum of distortion products: coherent is
     the worst case of phase.
     """
 
@@ -102,6 +103,7 @@ class Budget(Document):
     input_level_unit: str = "dBm"
     noise_source: float | None = Field(default=None, ge=0)
     bandwidth_hz: float | None = Field(default=None, gt=0)
+    channel_spacing_hz: float | None = Field(default=None, gt=0)
     positions: tuple[BudgetPosition, ...] = ()
     lines: tuple[BudgetLine, ...] = ()
     correlations: tuple[Correlation, ...] = ()
@@ -144,6 +146,7 @@ class Budget(Document):
                 raise ValueError(f"{self.id}: {line.place} is given twice")
             seen.add(key)
         return self
+
 
 class Allocation(Document):
     """The link from a parent requirement to the block requirement that carries its share.

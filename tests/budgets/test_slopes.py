@@ -36,6 +36,7 @@ QUANTITIES = {
     "eirp": "dBm",
     "output_backoff": "dB",
     "sfdr": "dB",
+    "aclr": "dB",
 }
 
 
@@ -72,6 +73,7 @@ def everything(**fields: object) -> tuple[Budget, list[object]]:
         {"block": "IF", "gain": 25.0, "noise_figure": 4.0, "oip3": 30.0, "iip2": 30.0, "op1db": 20.0},
         requirements=names,
         bandwidth_hz=1e6,
+        channel_spacing_hz=1.3e6,
         **fields,
     )
     requirements = [

@@ -101,6 +101,12 @@ LAYOUT = SheetLayout(
             field="bandwidth_hz",
             guidance="With unit; neither channel spacing nor 3 dB width.",
         ),
+        SheetColumn(
+            key="channel_spacing",
+            title="Channel spacing",
+            field="channel_spacing_hz",
+            guidance="Of the adjacent channel, with unit. For leakage; the bandwidth is then the occupied width.",
+        ),
         SheetColumn(key="plane_in", title="Input plane", aliases=("From plane",)),
         SheetColumn(key="plane_out", title="Output plane", aliases=("To plane",)),
         SheetColumn(
@@ -158,6 +164,7 @@ def build(row: SheetRow, intake: Intake) -> Budget | None:
         input_level_unit="dBm" if level is None else format_unit(level.unit),
         noise_source=_in(row, "noise_source", "K"),
         bandwidth_hz=_in(row, "bandwidth", "Hz"),
+        channel_spacing_hz=_in(row, "channel_spacing", "Hz"),
         positions=before.positions if before else (),
         lines=before.lines if before else (),
         correlations=correlations,

@@ -137,6 +137,7 @@ def test_what_a_budget_states_besides(tmp_path: Path) -> None:
                 "Input level": "-60 dBm",
                 "Noise source": "150 K",
                 "Noise bandwidth": "10 MHz",
+                "Channel spacing": "12 MHz",
                 "Distortion adds": "non-coherent",
                 "Reserve": "noise_figure: 0.2 dB; gain: 1 dB",
                 "Reserve held by": "Systems",
@@ -146,6 +147,7 @@ def test_what_a_budget_states_besides(tmp_path: Path) -> None:
     )
     assert (budget.quantity.parameter, budget.input_level, budget.noise_source) == ("gain", -60.0, 150.0)
     assert (budget.bandwidth_hz, budget.intermodulation) == (10e6, "non-coherent")
+    assert budget.channel_spacing_hz == 12e6
     assert [(one.parameter, one.amount, one.holder) for one in budget.reserves] == [
         ("noise_figure", 0.2, "Systems"),
         ("gain", 1.0, "Systems"),
