@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from functools import partial
 
 from specflow.conditions import expand, read_combination, read_dimension, read_exclusions, set_words
 from specflow.importers.sheets.intake import Intake
@@ -226,11 +227,9 @@ def _listed_dimensions(rows: Sequence[SheetRow], notes: list[str]) -> list[Dimen
     tolerances = _parts(listed[0], "tolerance", len(names))
     units = _parts(listed[0], "unit", len(names))
     found = []
-    for name, values, tolerance, unit in zip(names, columns, tolerances, units, strict=True):
-        text = "; ".join(values)
-        one = listed[0].attempt(
-            "required", lambda n=name, v=text, t=tolerance, u=unit: read_dimension(n, v, tolerance=t, unit=u)
-        )  # type: ignore[misc]
+    for name, column, tolerance, unit in zip(names, columns, tolerances, units, strict=True):
+        read = partial(read_dimension, name, "; ".join(column), tolerance=tolerance, unit=unit)
+        one = listed[0].attempt("required", read)
         if one is not None:
             found.append(one.dimension)
             notes.extend(one.notes)

@@ -12,7 +12,7 @@ from specflow.model.nouns import NOUN_BY_NAME, NOUNS, Noun
 
 def leave_out_orphans(intake: Intake) -> None:
     """Take out documents that refer to something neither the workbook nor the project gives, until none is left."""
-    while orphans := [(noun, key, *link) for noun in NOUNS for key, *link in _orphans(intake, noun)]:
+    while orphans := [orphan for noun in NOUNS for orphan in _orphans(intake, noun)]:
         for noun, key, field, code, target in orphans:
             if intake.documents[noun.name].pop(key, None) is None:
                 continue
@@ -27,12 +27,12 @@ def leave_out_orphans(intake: Intake) -> None:
             )
 
 
-def _orphans(intake: Intake, noun: Noun) -> Iterator[tuple[str, str, str, Noun]]:
+def _orphans(intake: Intake, noun: Noun) -> Iterator[tuple[Noun, str, str, str, Noun]]:
     for key, document in intake.documents.get(noun.name, {}).items():
         for field, target in noun.links:
             for code in _codes(document, field):
                 if not _stands(intake, target, code):
-                    yield key, field, code, NOUN_BY_NAME[target]
+                    yield noun, key, field, code, NOUN_BY_NAME[target]
 
 
 def _codes(document: Document, field: str) -> tuple[str, ...]:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass, field
-from datetime import date
+from datetime import date as Date  # noqa: N812  (``date`` is what a row is asked for)
 from enum import StrEnum
 from typing import TypeVar
 
@@ -149,16 +149,16 @@ class SheetRow:
             return default
         return int(number)
 
-    def date(self, column: str) -> date | None:
+    def date(self, column: str) -> Date | None:
         """Return the date in a cell, None where it is empty or refused."""
         return self._read(column, cell_date)
 
-    def day(self, column: str) -> date:
+    def day(self, column: str) -> Date:
         """Return the date in a cell that may not be empty."""
         found = self.date(column)
         if found is None:
             self.fault(column, f"{self.layout.column(column).title} is empty", "write a date, as 2026-03-31")
-        return found or date.min
+        return found or Date.min
 
     def yes(self, column: str, default: T) -> bool | T:
         """Return whether a cell says yes, the default where it is empty."""
