@@ -16,14 +16,19 @@ from typer.core import TyperGroup
 
 @dataclass(frozen=True, slots=True)
 class CommandEntry:
-    """One command: the function of its name in the module of its name, and what it is for."""
+    """One command: the function of its name in the module of its name, and what it is for.
+
+    ``module`` names both where Python has taken the word.
+    """
 
     name: str
     summary: str
+    module: str = ""
 
     def load(self) -> Any:
         """Import the command and return it, ready to be invoked."""
-        function = getattr(import_module(f"specflow.cli.{self.name}"), self.name)
+        name = self.module or self.name
+        function = getattr(import_module(f"specflow.cli.{name}"), name)
         app = typer.Typer(add_completion=False, rich_markup_mode=None, context_settings=HELP_NAMES)
         app.command(self.name)(function)
         return typer.main.get_command(app)
@@ -38,6 +43,7 @@ COMMANDS = (
     CommandEntry("allocate", "Allocate a budget over its blocks."),
     CommandEntry("attach", "Attach measurement files."),
     CommandEntry("known", "Evaluate a budget with the best that is known of each block."),
+    CommandEntry("try", "Try changes: what they would do to margins, allocations and status.", "try_"),
     CommandEntry("status", "Show what is proved, failing and missing."),
     CommandEntry("check", "List the findings of the rules."),
     CommandEntry("trace", "Walk from a requirement up to the system and down to the cell."),

@@ -151,8 +151,8 @@ class Budget(Document):
 class Allocation(Document):
     """The link from a parent requirement to the block requirement that carries its share.
 
-    ``budget`` with its revision, or "manual" with a reason. ``proposed`` is the limit that the budget gave; where the
-    child carries another by hand, ``manual_reason`` says why.
+    ``budget`` with its revision, or "manual" with a reason. ``proposed`` is the limit that the budget gave and ``way``
+    how it was shared; where the child carries another limit by hand, ``manual_reason`` says why.
     """
 
     id: Code
@@ -163,6 +163,7 @@ class Allocation(Document):
     budget_revision: int | None = None
     manual_reason: str = ""
     proposed: str = ""
+    way: str = ""
     state: Literal["proposed", "agreed", "baselined"] = "proposed"
     given_by: str = ""
     taken_by: str = ""

@@ -129,7 +129,7 @@ def propose(
         if not one.is_open and serves.get(one.key)
     ]
     closure = closure_test(probe, {one.allotment.key: _as_given(one, probe) for one in proposals})
-    documents = _documents(snapshot, budget, proposals)
+    documents = _documents(snapshot, budget, proposals, options.way)
     if budget != stored:
         documents.insert(0, budget)
     return AllocatePreview(
@@ -308,16 +308,18 @@ def _free_id(snapshot: Snapshot, stem: str) -> str:
     return code
 
 
-def _documents(snapshot: Snapshot, budget: Budget, proposals: Sequence[Proposal]) -> list[Document]:
+def _documents(snapshot: Snapshot, budget: Budget, proposals: Sequence[Proposal], way: Way) -> list[Document]:
     revision = due_revision(snapshot.find(Budget, budget.id), budget) or budget.revision
     documents: list[Document] = [one.child for one in proposals]
     for one in proposals:
         for code in one.parents:
-            documents.append(_link(snapshot, budget, revision, one, code))
+            documents.append(_link(snapshot, budget, revision, one, code, way))
     return documents
 
 
-def _link(snapshot: Snapshot, budget: Budget, revision: int, one: Proposal, code: str) -> Allocation:
+def _link(
+    snapshot: Snapshot, budget: Budget, revision: int, one: Proposal, code: str, way: Way
+) -> Allocation:
     parent = snapshot.find(Requirement, code)
     assert parent is not None  # a budget is read only when all it serves is there
     stored = next(
@@ -335,6 +337,7 @@ def _link(snapshot: Snapshot, budget: Budget, revision: int, one: Proposal, code
         "budget": budget.id,
         "budget_revision": revision,
         "proposed": text,
+        "way": way,
         "manual_reason": one.reason,
     }
     if all(getattr(fresh, name) == value for name, value in fields.items()):
