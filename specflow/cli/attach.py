@@ -82,7 +82,7 @@ def attach(
     """Attach measurement files: show how every column is understood, what is rejected, then store it."""
     from specflow.workflows.attach import AttachOptions, Decision
 
-    options = AttachOptions(_statements(state), mapping, sheet, include_hidden)
+    options = AttachOptions(_statements(state), mapping, sheet, include_hidden, supersedes)
     decision = Decision(person(by), take_rest, supersedes, beside, resolves)
     if propose_mapping is not None and len(files) > 1:
         raise SpecflowError("a mapping is proposed for one file at a time", hint="name one file")

@@ -29,13 +29,15 @@ from specflow.workflows.evaluate_project import project_dictionary
 class AttachOptions:
     """What the person says about the files, beside the files themselves.
 
-    ``stated`` holds for all tables; ``mapping`` is a mapping file; ``sheets`` limits what is read.
+    ``stated`` holds for all tables; ``mapping`` is a mapping file; ``sheets`` limits what is read. ``supersedes`` are
+    earlier tables that are compared whatever their layout.
     """
 
     stated: Mapping[str, str] = field(default_factory=dict)
     mapping: Path | None = None
     sheets: Sequence[str] = ()
     include_hidden_rows: bool = False
+    supersedes: Sequence[str] = ()
 
 
 @dataclass(frozen=True)
@@ -134,7 +136,11 @@ def preview_attach(
         place: found
         for place, table in enumerate(measurements.tables)
         if table.document and table.columns and place not in known
-        if (found := replaced_rows(snapshot, table.document, table.columns, measurements.file.sha256))
+        if (
+            found := replaced_rows(
+                snapshot, table.document, table.columns, measurements.file.sha256, options.supersedes
+            )
+        )
     }
     return AttachPreview(
         path, measurements, snapshot, known, replacements, _mapping_documents(snapshot, measurements, path)
@@ -245,7 +251,8 @@ def _refuse_unsaid(preview: AttachPreview, decision: Decision) -> Mapping[int, S
             raise DocumentError(
                 f"no row of {preview.path.name} has the identity of a row of {name}",
                 where=name,
-                hint="rows are the same when block, quantity, item, conditions and set-up are; see the preview",
+                hint="rows are the same when block, quantities, item, conditions with their units, set-up and "
+                "performer are; see the preview",
             )
     if decision.resolves and not named:
         raise DocumentError("--resolves names a fail, but nothing is superseded", where=preview.path.name,

@@ -12,6 +12,7 @@ from specflow.model.evidence import EvidenceColumns, EvidenceFile, EvidenceTable
 from specflow.model.snapshot import Snapshot
 
 RowKey = tuple[object, ...]
+Rows = dict[RowKey, tuple[int, tuple[object, ...]]]
 
 
 @dataclass(frozen=True, slots=True)
@@ -31,11 +32,17 @@ class Replacement:
 
 
 def replaced_rows(
-    snapshot: Snapshot, table: EvidenceTable, columns: EvidenceColumns, sha256: str
+    snapshot: Snapshot,
+    table: EvidenceTable,
+    columns: EvidenceColumns,
+    sha256: str,
+    named: Sequence[str] = (),
 ) -> list[Replacement]:
     """Compare a new table with the earlier ones of its key, and with those read from the same cells of the same file.
 
-    The second are tables that another mapping gave. Tables replaced or withdrawn as a whole are left out.
+    The second are tables that another mapping gave. The ``named`` ones are compared in whatever layout they are (a
+    retest with a column less), where block, quantities, conditions, set-up and performer are the same. Tables replaced
+    or withdrawn as a whole are left out.
     """
     gone = {code_key(one.earlier) for one in snapshot.all(Supersession) if one.rows is None}
     gone |= {code_key(one.table) for one in snapshot.all(Withdrawal) if one.rows is None}
@@ -47,21 +54,41 @@ def replaced_rows(
         for one in standing
         if code_key(one.file) in files and one.sheet == table.sheet and one.table_key != table.table_key
     ]
-    arrays = snapshot.load_columns([one.id for one in (*again, *cells)]) if again or cells else {}
-    mine = _rows(table, columns) if again else {}
+    seen = {one.id for one in (*again, *cells)}
+    wished = set(map(code_key, named))
+    others = [
+        one
+        for one in standing
+        if code_key(one.id) in wished and one.id not in seen and _told(one) == _told(table)
+    ]
+    wanted = [one.id for one in (*again, *cells, *others)]
+    arrays = snapshot.load_columns(wanted) if wanted else {}
+    mine = _rows(table, columns) if again or others else {}
     found = []
     for one in again:
-        pairs = [
-            (row, values != mine[key][1])
-            for key, (row, values) in _rows(one, arrays[one.id]).items()
-            if key in mine
-        ]
+        pairs = _pairs(_rows(one, arrays[one.id]), mine)
         same_file = code_key(one.file) in files
         found.append(
             _replacement(snapshot, one, pairs or (_same_cells(one, columns, arrays) if same_file else []))
         )
     found += [_replacement(snapshot, one, _same_cells(one, columns, arrays)) for one in cells]
+    for one in others:
+        pairs = _pairs(_rows(one, arrays[one.id]), mine)
+        found.append(_replacement(snapshot, one, pairs))
     return [one for one in found if one.rows]
+
+
+def _pairs(earlier: Rows, mine: Rows) -> list[tuple[int, bool]]:
+    """Rows of an earlier table that are rows of the new one, and whether their values differ."""
+    return [(row, values != mine[key][1]) for key, (row, values) in earlier.items() if key in mine]
+
+
+def _told(table: EvidenceTable) -> tuple[object, ...]:
+    """What two tables share that say the same in other layouts: block, quantities, conditions, who measured and how."""
+    quantities = sorted(column.quantity.model_dump_json().casefold() for column in table.values)
+    conditions = sorted((column.dimension, column.unit) for column in table.conditions)
+    who = (table.set_up.casefold(), table.performer.casefold())
+    return code_key(table.block), table.method, table.stage, who, quantities, conditions
 
 
 def _same_cells(
@@ -84,7 +111,7 @@ def _replacement(
     return Replacement(earlier.id, earlier.rows, rows, sum(differs for _, differs in left))
 
 
-def _rows(table: EvidenceTable, columns: EvidenceColumns) -> dict[RowKey, tuple[int, tuple[object, ...]]]:
+def _rows(table: EvidenceTable, columns: EvidenceColumns) -> Rows:
     """Row identity → (position, what the row says); repeated readings under one identity are told apart by order."""
     quantities = tuple(sorted(column.quantity.model_dump_json().casefold() for column in table.values))
     items = [label.casefold() for label in columns.items.labels]
@@ -102,7 +129,7 @@ def _rows(table: EvidenceTable, columns: EvidenceColumns) -> dict[RowKey, tuple[
         np.column_stack([columns.values[column.name].low, columns.values[column.name].high]).tolist()
         for column in named
     ]
-    rows: dict[RowKey, tuple[int, tuple[object, ...]]] = {}
+    rows: Rows = {}
     seen: dict[RowKey, int] = {}
     for row, identity in enumerate(zip(*parts, strict=True)):
         turn = seen.get(identity, 0)

@@ -267,3 +267,24 @@ def test_intervals_and_uncertainty_survive_the_store(store: ProjectStore, tmp_pa
     arrays = store.load().load_columns(["EV-1"])["EV-1"].values["Gain"]
     assert (list(arrays.low), list(arrays.high)) == ([-np.inf, 20], [18, 20])
     assert arrays.u is not None and arrays.u[0] == 0.2 and np.isnan(arrays.u[1])
+
+
+def test_a_retest_in_another_layout_replaces_the_rows_of_the_table_that_is_named(
+    store: ProjectStore, tmp_path: Path
+) -> None:
+    attached(store, book(tmp_path / "gain.xlsx", FIRST))
+    other = [["f (GHz)", "Gain (dB)", "Serial", "Limit (dB)"], [30, 20.2, "LNA-1", 18], [31, 20, "LNA-1", 18]]
+    path = book(tmp_path / "retest.xlsx", other, sheet="Retest")
+    assert not preview_attach(store, path).replacements
+    preview = preview_attach(store, path, AttachOptions(supersedes=["ev-1"]))
+    [replacement] = preview.replacements[0]
+    assert (replacement.earlier, replacement.rows, replacement.differing) == ("EV-1", (2,), 1)
+    accept_attach(store, preview, Decision("A. B.", supersedes=["EV-1"]))
+    [step] = store.load().all(Supersession)
+    assert (step.earlier, step.later, step.rows) == ("EV-1", "EV-2", (2,))
+
+
+def test_another_laboratory_replaces_nothing(store: ProjectStore, tmp_path: Path) -> None:
+    attached(store, book(tmp_path / "gain.xlsx", FIRST))
+    path = book(tmp_path / "other.xlsx", [["Laboratory", "Pier (invented)"], HEADER, ["LNA-1", 30, 20.2]])
+    assert not preview_attach(store, path, AttachOptions(supersedes=["EV-1"])).replacements
