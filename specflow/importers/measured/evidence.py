@@ -125,6 +125,10 @@ def _ask_about_columns(work: TableWork) -> None:
             work.notes.append(
                 f"column {column_letter(header.column)} is hidden in the file; it was read all the same"
             )
+    if _lies_on_its_side(work):
+        remedy = "turn it (copy, paste special, transpose): one row of headers, one reading a row"
+        work.ask("", table.place, "the table lies on its side, with its headers in the first column", remedy)
+        return
     for column in table.unnamed:
         cells = table.cells(column)
         letter = column_letter(column)
@@ -139,6 +143,17 @@ def _ask_about_columns(work: TableWork) -> None:
             "name the parameter in a mapping (--propose-mapping writes one), or skip = true for this layout"
         )
         work.ask("", table.place, "no column holds values of a parameter", remedy)
+
+
+def _lies_on_its_side(work: TableWork) -> bool:
+    """Whether the first column holds headers that are known, and numbers stand in columns without a header."""
+    table = work.table
+    if not table.unnamed or not table.headers:
+        return False
+    cells = table.cells(min(header.column for header in table.headers))
+    texts = [value for value in cells.at(table.rows) if isinstance(value, str) and value.strip()]
+    known = sum(map(work.context.recognises, texts))
+    return len(texts) == len(table.rows) and known >= 2 and 2 * known >= len(texts)
 
 
 def _evidence(

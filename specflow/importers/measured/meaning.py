@@ -26,7 +26,7 @@ from specflow.importers.measured.header_cells import HeaderCell
 from specflow.importers.measured.header_text import header_key, known_unit, read_header
 from specflow.importers.measured.mapping import ColumnMapping, LayoutMapping
 from specflow.importers.measured.pairing import of_their_values, uncertainty_column, without_doubles
-from specflow.importers.measured.quantity_text import name_quantity
+from specflow.importers.measured.quantity_text import bare_word, name_quantity
 from specflow.importers.measured.result import Role
 from specflow.importers.measured.roles import UncertaintyWords, role_of_words, uncertainty_of
 from specflow.importers.measured.stated import PERSON, Stated
@@ -184,6 +184,13 @@ class _Reader:
                 "unit; or put the items into a column of their own"
             )
             return heading.ask(what, remedy)
+        bare = bare_word(heading.parts)
+        if bare:
+            column = f"column {heading.letter}"
+            remedy = (
+                f'--state "{column}=stated limit", "{column}=not read", or name the parameter in a mapping'
+            )
+            return heading.ask(f"{heading.parts.name!r} may mean {bare}; of what, it does not say", remedy)
         near = ", ".join(one.key for one in self._context.dictionary.suggest(heading.parts.name))
         odd = f"; {heading.parts.odd_unit!r} is no unit" if heading.parts.odd_unit else ""
         return heading.ask_parameter(f"names no parameter and no condition that is known{odd}", near)

@@ -86,6 +86,11 @@ def name_quantity(
     return _doubted(_placed(named, [place, *extra], planes), first, parts, unit, dictionary)
 
 
+def bare_word(parts: HeaderText) -> str:
+    """What a header like "Min (dB)", which names no quantity, may mean; "" for any other."""
+    return _NOT_A_READING.get(parts.name.casefold().strip(" ."), "")
+
+
 def density_of(parameter: Parameter, unit: str, dictionary: Dictionary) -> Parameter | None:
     """Return the parameter of the same quantity per bandwidth, where the unit is a density and there is one."""
     spelled = known_unit(unit)

@@ -63,7 +63,9 @@ def value_of(
         what = (
             f"{parameter.title} in {unit.unit}; {_with_article(parameter.title)} is {_kind_words(parameter)}"
         )
-        return heading.ask(what, "correct the header, or settle parameter and unit in a mapping")
+        unread = f'--state "column {heading.letter}=not read"'
+        remedy = f"correct the header, settle parameter and unit in a mapping, or {unread}"
+        return heading.ask(what, remedy)
     try:
         bandwidth = _bandwidth(heading, parameter, unit.unit, stated)
     except UnitError as error:

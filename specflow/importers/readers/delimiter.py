@@ -47,7 +47,6 @@ def find_layout(lines: Sequence[str]) -> Layout:
     fields = [field for line in sample for field in split(line, best)]
     if best == ",":
         _refuse_decimal_comma(sample, best_width)
-        return Layout(best, best_width, ".")
     return Layout(best, best_width, _decimal(fields))
 
 

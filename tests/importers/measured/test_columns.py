@@ -11,7 +11,7 @@ from specflow.importers.measurements import MeasuredTable, Role
 from specflow.model.base import Document
 from specflow.model.block import Plane
 from tests.builders import a_block, a_conditions_set, a_dimension, a_quantity, a_requirement, at_least
-from tests.importers.measured.make import book, one_table, questions, taken
+from tests.importers.measured.make import SAID, book, low, one_table, questions, taken
 
 
 def column(path: Path, header: str, cell: Any = 20.0, *documents: Document, **options: Any) -> MeasuredTable:
@@ -233,3 +233,12 @@ def test_dc_supply_columns_by_their_usual_names(tmp_path: Path) -> None:
     assert table.document is not None and table.columns is not None
     assert table.document.values[0].quantity.parameter == "supply_current"
     assert list(table.columns.conditions.numeric["supply_voltage"]) == [28]
+
+
+def test_a_bare_min_or_max_says_what_it_may_be(tmp_path: Path) -> None:
+    path = book(tmp_path / "a.xlsx", [["f (GHz)", "Gain (dB)", "Min (dB)", "Max (dB)"], [27.5, 20, 18, 22]])
+    asked = questions(one_table(path))
+    assert "'Min' may mean the smallest of several readings, or a limit" in asked
+    assert '--state "column C=stated limit"' in asked
+    said = SAID | {"column C": "stated limit", "column D": "stated limit"}
+    assert low(taken(one_table(path, stated=said)), "Gain") == [20]

@@ -259,3 +259,9 @@ def test_columns_named_by_items_are_asked_about_with_the_pivot_that_reads_them(t
     table = taken(one_table(path, stated={"block": "LNA"}, mapping=mapping))
     assert table.columns is not None
     assert [table.columns.items.word(row) for row in range(2)] == ["LNA-1", "LNA-2"]
+
+
+def test_a_table_on_its_side_is_told_in_one_question(tmp_path: Path) -> None:
+    rows = [["DUT", "LNA-1"], [], ["f (GHz)", 27.5, 28, 30], ["Gain (dB)", 20, 19, 18], ["NF (dB)", 1, 2, 3]]
+    asked = questions(one_table(book(tmp_path / "a.xlsx", rows), stated={"block": "LNA"}))
+    assert "lies on its side" in asked and "transpose" in asked and "numbers without a header" not in asked

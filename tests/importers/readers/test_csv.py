@@ -199,3 +199,10 @@ def test_a_decimal_comma_in_a_line_of_one_field_is_no_separator(tmp_path: Path, 
     path.write_text(f"{line}\nf;G\n20,5;1,5\n{line}\n27,5;1,7\n", encoding="utf-8")
     grid = next(iter(open_grids(path)))
     assert list(grid.row(1)) == list(grid.row(4)) == [line]
+
+
+def test_quoted_decimal_commas_between_commas_are_found(tmp_path: Path) -> None:
+    path = tmp_path / "a.csv"
+    path.write_text('f,G\n"27,5","20,1"\n"30,0","19,9"\n', encoding="utf-8")
+    grid = next(iter(open_grids(path)))
+    assert grid.decimal == "," and list(grid.row(2)) == ["27,5", "20,1"]
