@@ -33,7 +33,8 @@ TableOption = Annotated[
     list[str] | None,
     typer.Option(
         "--table",
-        help="Only this table: matrix, points, evidence, findings, budgets or about (may be repeated; csv holds one).",
+        help="Only this table: summary, matrix, points, evidence, findings, budgets or about (may be repeated; csv "
+        "holds one).",
         show_default=False,
     ),
 ]
@@ -51,9 +52,9 @@ def export(
 ) -> None:
     """Write the compliance workbook, or the same as a page, csv or JSON.
 
-    Compliance matrix, required points, evidence, findings, budgets, and what it was made from. In the workbook each
-    budget is a sheet that calculates, with the tool's own values beside its formulas; on the page it is drawn. The same
-    project gives the same bytes.
+    Summary, compliance matrix, required points, evidence, findings, budgets, and what it was made from. In the workbook
+    each budget is a sheet that calculates, with the tool's own values beside its formulas; on the page it is drawn. The
+    same project gives the same bytes.
     """
     from specflow.workflows.export import export_report, format_for, write_export
 

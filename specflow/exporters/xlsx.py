@@ -15,13 +15,17 @@ from typing import Any
 import xlsxwriter
 
 from specflow.exporters.formula_sheets import write_formula_sheet
-from specflow.model.report import Align, CellTone, Report, ReportCell, ReportRow, ReportTable
+from specflow.exporters.paper import lines_in, pages_across
+from specflow.model.report import Align, CellTone, Report, ReportCell, ReportColumn, ReportRow, ReportTable
 
 title = "Workbook"
 extension = ".xlsx"
 
 # A fixed date of creation: the same report gives the same bytes. What it was made from stands in its "about" sheet.
 CREATED = datetime(2000, 1, 1, tzinfo=UTC).replace(tzinfo=None)
+LINE = 15  # points
+MOST_LINES = 12  # a row higher than this hides its neighbours; the cell still holds all of its text
+A4 = 9  # what the file format calls this paper
 HEADER = 3  # row of the headers, from 0
 MOST_ROWS = 1_048_000
 MOST_LINKS = 60_000  # a sheet may hold 65,530 links
@@ -130,17 +134,37 @@ def _write_part(book: Any, part: _Part, styles: _Styles, targets: dict[str, str]
         name = column.title + (f"\n({column.explains})" if column.explains else "")
         sheet.write_string(HEADER, place, name, styles.heading("header"))
         sheet.set_column(place, place, column.width)
+    sheet.set_row(HEADER, LINE * max(_title_lines(column) for column in table.columns))
     for offset, row in enumerate(part.rows):
         for place, cell in enumerate(row.cells):
             depth = row.depth if place == 0 else 0
             look = styles.get(cell.tone, table.columns[place].align, figure_format(cell), depth)
             _write_cell(sheet, HEADER + 1 + offset, place, cell, look, targets)
+        lines = max(
+            lines_in(cell.text, column.width) for cell, column in zip(row.cells, table.columns, strict=True)
+        )
+        if lines > 1:
+            sheet.set_row(HEADER + 1 + offset, LINE * min(lines, MOST_LINES))
     sheet.freeze_panes(HEADER + 1, 1)
     if part.rows:
         sheet.autofilter(HEADER, 0, HEADER + len(part.rows), len(table.columns) - 1)
+    _set_pages(sheet, table)
+
+
+def _title_lines(column: ReportColumn) -> int:
+    room = column.width - 1  # bold
+    return lines_in(column.title, room) + (lines_in(f"({column.explains})", room) if column.explains else 0)
+
+
+def _set_pages(sheet: Any, table: ReportTable) -> None:
+    """Print whole columns on each page, large enough to be read; what the row is about stands on all of them."""
     sheet.set_landscape()
-    sheet.fit_to_pages(1, 0)
+    sheet.set_paper(A4)
+    sheet.set_margins(left=0.4, right=0.4, top=0.5, bottom=0.6)
+    sheet.fit_to_pages(pages_across([column.width for column in table.columns]), 0)
     sheet.repeat_rows(HEADER)
+    sheet.repeat_columns(0)
+    sheet.set_footer("&L&A&RPage &P of &N")
 
 
 def _write_cell(

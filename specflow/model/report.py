@@ -28,13 +28,17 @@ class Align(StrEnum):
 
 
 class ReportColumn(Document):
-    """A column: ``key`` for scripts, ``title`` for people, ``explains`` is the note under it."""
+    """A column: ``key`` for scripts, ``title`` for people, ``explains`` is the note under it.
+
+    A ``detail`` describes; paper leaves it out where a table is wider than a page.
+    """
 
     key: str
     title: str
     align: Align = Align.LEFT
     width: int = 14
     explains: str = ""
+    detail: bool = False
 
 
 class ReportCell(Document):

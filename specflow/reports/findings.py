@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
+from specflow.model.base import code_key
 from specflow.model.finding import Finding, Severity
 from specflow.model.report import CellTone, ReportCell, ReportColumn, ReportRow, ReportTable
 from specflow.reports.figures import text
@@ -22,6 +23,14 @@ FINDING_COLUMNS = (
     ReportColumn(key="remedy", title="What to do", width=46),
     ReportColumn(key="origin", title="Where", width=34),
 )
+
+
+def by_subject(findings: Sequence[Finding]) -> list[Finding]:
+    """Return findings with those about one thing side by side; the things in the order in which they first occur."""
+    together: dict[str, list[Finding]] = {}
+    for finding in findings:
+        together.setdefault(code_key(finding.subject), []).append(finding)
+    return [finding for about in together.values() for finding in about]
 
 
 def findings_table(findings: Sequence[Finding], title: str = "Findings") -> ReportTable:

@@ -22,6 +22,11 @@ STATUS_COLUMNS = (
     ReportColumn(key="block", title="Block", width=14),
     ReportColumn(key="limit", title="Limit", width=22),
 )
+SUMMARY_INTRO = (
+    "Compliance says whether the limits are met, close-out whether the matter is closed and why: a waiver closes a "
+    "requirement and never makes it compliant. Both count applicable requirements; those not applicable are of all. A "
+    "point where one item proves and another fails is counted in both."
+)
 
 
 def status_table(
@@ -129,6 +134,52 @@ def close_out_totals(results: Results, requirements: Iterable[Requirement]) -> R
             ReportColumn(key="count", title="Requirements", align=Align.RIGHT),
         ),
         rows=tuple(rows),
+    )
+
+
+def summary_table(results: Results, requirements: Sequence[Requirement]) -> ReportTable:
+    """Return the totals of all axes as one table, each with its denominator; what is shown first."""
+    axes = (
+        ("Compliance", compliance_totals(results, requirements)),
+        ("Close-out", close_out_totals(results, requirements)),
+        ("Required points", points_totals(results, requirements)),
+    )
+    return ReportTable(
+        key="summary",
+        title="Summary",
+        intro=SUMMARY_INTRO,
+        columns=(
+            ReportColumn(key="axis", title="Axis", width=18),
+            ReportColumn(key="state", title="State", width=40),
+            ReportColumn(key="count", title="Count", align=Align.RIGHT, width=14),
+        ),
+        rows=tuple(
+            ReportRow(id=f"{axis}: {row.id}", cells=(ReportCell(text=axis), *row.cells))
+            for axis, table in axes
+            for row in table.rows
+        ),
+    )
+
+
+def points_totals(results: Results, requirements: Iterable[Requirement]) -> ReportTable:
+    """Return how many required points stand where, of all those of applicable requirements."""
+    statuses = [results.of(requirement.id) for requirement in requirements]
+    counted = [status for status in statuses if status.compliance is not Compliance.NOT_APPLICABLE]
+    n = sum(status.n for status in counted)
+    parts = (
+        ("proved", sum(status.k for status in counted), CellTone.GOOD),
+        ("failing", sum(status.n_failing for status in counted), CellTone.BAD),
+        ("without evidence", sum(status.n_without_evidence for status in counted), CellTone.DOUBTFUL),
+        ("undecided", sum(status.n_undecided for status in counted), CellTone.DOUBTFUL),
+    )
+    return ReportTable(
+        key="points_totals",
+        title="Required points",
+        columns=(
+            ReportColumn(key="state", title="State", width=34),
+            ReportColumn(key="count", title="Points", align=Align.RIGHT),
+        ),
+        rows=tuple(_total_row(name, count, n, tone) for name, count, tone in parts),
     )
 
 

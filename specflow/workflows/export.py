@@ -14,15 +14,15 @@ from specflow.model.budget import Budget
 from specflow.model.report import Report, ReportTable
 from specflow.reports.about import about_table, cautions
 from specflow.reports.evidence import evidence_table
-from specflow.reports.findings import findings_table
+from specflow.reports.findings import by_subject, findings_table
 from specflow.reports.matrix import compliance_matrix
 from specflow.reports.points import POINT_COLUMNS, points_count, points_table
-from specflow.reports.status import in_tree_order
+from specflow.reports.status import in_tree_order, summary_table
 from specflow.store import ProjectStore
 from specflow.workflows.budget_parts import BudgetParts, budget_parts
 from specflow.workflows.evaluate_project import Evaluation, evaluate_project
 
-TABLES = ("matrix", "points", "evidence", "findings", "budgets", "about")
+TABLES = ("summary", "matrix", "points", "evidence", "findings", "budgets", "about")
 MOST_POINTS_ON_A_PAGE = 20_000  # a browser lays out no more rows than this in reasonable time
 
 
@@ -47,7 +47,7 @@ def export_report(
     if unknown:
         raise SpecflowError(f"there is no table {unknown[0]!r}", hint=f"tables: {', '.join(TABLES)}")
     evaluation = evaluate_project(store, as_of)
-    report = compliance_report(evaluation, tables or _there(evaluation), format)
+    report = compliance_report(evaluation, tables or _there(evaluation, format), format)
     name = re.sub(r"[^\w.-]+", "-", evaluation.snapshot.project.name).strip("-.") or "project"
     return Export(
         rendering.render(report),
@@ -56,8 +56,10 @@ def export_report(
     )
 
 
-def _there(evaluation: Evaluation) -> Sequence[str]:
-    """Return the tables that a project has when none is asked for: budgets only where there are any."""
+def _there(evaluation: Evaluation, format: str) -> Sequence[str]:
+    """Return the tables when none is asked for: budgets only where there are any; csv has room for one, the matrix."""
+    if format == "csv":
+        return ("matrix",)
     return [name for name in TABLES if name != "budgets" or evaluation.snapshot.all(Budget)]
 
 
@@ -89,6 +91,8 @@ def _table(name: str, evaluation: Evaluation, *, for_page: bool) -> ReportTable:
     snapshot, results, dictionary = evaluation.snapshot, evaluation.results, evaluation.dictionary
     requirements, depths = in_tree_order(snapshot)
     match name:
+        case "summary":
+            return summary_table(results, requirements)
         case "matrix":
             return compliance_matrix(snapshot, results, evaluation.findings, dictionary, requirements, depths)
         case "points":
@@ -99,7 +103,7 @@ def _table(name: str, evaluation: Evaluation, *, for_page: bool) -> ReportTable:
         case "evidence":
             return evidence_table(snapshot, results)
         case "findings":
-            return findings_table(evaluation.findings)
+            return findings_table(by_subject(evaluation.findings))
         case _:
             return about_table(snapshot, results, dictionary)
 

@@ -32,6 +32,7 @@ def test_the_workbook_is_named_after_the_project(command: Command, tmp_path: Pat
     assert (done.code, done.out.strip()) == (ExitCode.CLEAN, "Harbour-terminal-compliance.xlsx")
     book = load_workbook(tmp_path / "Harbour-terminal-compliance.xlsx")
     assert book.sheetnames == [
+        "Summary",
         "Compliance matrix",
         "Required points",
         "Evidence",

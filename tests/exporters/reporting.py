@@ -6,17 +6,17 @@ from specflow.model.finding import Finding, Severity
 from specflow.model.report import Report, ReportCell, ReportColumn, ReportRow, ReportTable
 from specflow.reports.about import about_table, cautions
 from specflow.reports.evidence import evidence_table
-from specflow.reports.findings import findings_table
+from specflow.reports.findings import by_subject, findings_table
 from specflow.reports.matrix import compliance_matrix
 from specflow.reports.points import points_table
-from specflow.reports.status import in_tree_order
+from specflow.reports.status import in_tree_order, summary_table
 from tests import harbour
 
 HOSTILE = '=HYPERLINK("http://invented.invalid","click")'
 
 
 def harbour_report() -> Report:
-    """Return all five tables."""
+    """Return all six tables."""
     snapshot = harbour.snapshot()
     results = harbour.results(snapshot)
     ordered, depths = in_tree_order(snapshot)
@@ -31,10 +31,11 @@ def harbour_report() -> Report:
         subtitle=f"judged as of {results.as_of}",
         cautions=cautions(snapshot, harbour.DICTIONARY),
         tables=(
+            summary_table(results, ordered),
             compliance_matrix(snapshot, results, findings, harbour.DICTIONARY, ordered, depths),
             points_table(snapshot, results, ordered),
             evidence_table(snapshot, results),
-            findings_table(findings),
+            findings_table(by_subject(findings)),
             # The versions of libraries differ from machine to machine; the golden page must not.
             without_versions(about_table(snapshot, results, harbour.DICTIONARY)),
         ),

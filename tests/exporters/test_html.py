@@ -81,6 +81,18 @@ def test_links_lead_to_rows_that_are_there_and_ids_are_single() -> None:
     assert {link[1:] for link in page.links} <= set(page.ids)
 
 
+def test_findings_can_be_reached_from_the_requirement_and_back() -> None:
+    page = parsed(PAGE)
+    assert {"#findings/PA-1", "#findings/PA-4"} <= set(page.links) and "findings/PA-1" in page.ids
+
+
+def test_paper_leaves_out_what_only_describes_and_says_so() -> None:
+    said = next(line for line in PAGE.splitlines() if "Not on paper" in line)
+    assert "Limit in words" in said and "Owner" in said and "Guarded margin" not in said
+    details = PAGE.count('class="detail"') + PAGE.count('class="number detail"')
+    assert details == sum(column.detail for column in REPORT.table("matrix").columns)
+
+
 def test_cautions_and_the_date_of_judgement_are_on_the_page() -> None:
     assert "not a certificate" in PAGE and "judged as of 2026-06-01" in PAGE
     assert "exposure assessment" in PAGE
@@ -94,14 +106,38 @@ def test_the_page_is_the_one_that_was_looked_at() -> None:
     assert GOLDEN.read_text("utf-8") == PAGE
 
 
+def browser() -> str:
+    """Return a browser, or skip the test."""
+    found = next(filter(None, map(shutil.which, ("chromium", "chromium-browser", "google-chrome"))), None)
+    if found is None:
+        pytest.skip("no chromium is installed")
+    return found
+
+
+@pytest.mark.desktop
+def test_a_browser_prints_the_matrix_within_the_width_of_a_page(tmp_path: Path) -> None:
+    if shutil.which("pdftotext") is None:
+        pytest.skip("pdftotext (poppler) is not installed")
+    (tmp_path / "page.html").write_text(PAGE, "utf-8")
+    subprocess.run(
+        [browser(), "--headless", "--no-sandbox", "--disable-gpu", f"--user-data-dir={tmp_path / 'profile'}",
+         f"--print-to-pdf={tmp_path / 'page.pdf'}", (tmp_path / "page.html").as_uri()],
+        check=True, timeout=120, capture_output=True,
+    )  # fmt: skip
+    said = subprocess.run(
+        ["pdftotext", "-layout", str(tmp_path / "page.pdf"), "-"],
+        check=True, timeout=60, capture_output=True, text=True,
+    ).stdout  # fmt: skip
+    words = " ".join(said.split())
+    assert "Limit as written" in words
+    assert "Governing value" not in words.split("Not on paper", 1)[1].split("show them.", 1)[1]
+
+
 @pytest.mark.desktop
 def test_a_browser_shows_the_page(tmp_path: Path) -> None:
-    browser = next(filter(None, map(shutil.which, ("chromium", "chromium-browser", "google-chrome"))), None)
-    if browser is None:
-        pytest.skip("no chromium is installed")
     (tmp_path / "page.html").write_text(PAGE, "utf-8")
     shown = subprocess.run(
-        [browser, "--headless", "--no-sandbox", "--disable-gpu", f"--user-data-dir={tmp_path / 'profile'}",
+        [browser(), "--headless", "--no-sandbox", "--disable-gpu", f"--user-data-dir={tmp_path / 'profile'}",
          "--window-size=1600,1200", f"--screenshot={tmp_path / 'page.png'}", "--dump-dom",
          (tmp_path / "page.html").as_uri()],
         check=True, timeout=120, capture_output=True, text=True,

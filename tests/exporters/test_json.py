@@ -21,7 +21,7 @@ def test_json_reads_back_as_the_same_report() -> None:
 
 def test_numbers_are_unrounded_and_cells_have_their_origin() -> None:
     payload = json.loads(writer("json").render(harbour_report()))
-    matrix = payload["tables"][0]
+    matrix = next(table for table in payload["tables"] if table["key"] == "matrix")
     row = next(row for row in matrix["rows"] if row["id"] == "PA-1")
     cells = dict(zip((column["key"] for column in matrix["columns"]), row["cells"], strict=True))
     assert cells["guarded_margin"]["number"] == pytest.approx(-1.188857538602619, abs=1e-15)

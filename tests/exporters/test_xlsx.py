@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import io
+import shutil
+import subprocess
 import zipfile
 from collections.abc import Iterator
 from pathlib import Path
@@ -101,8 +103,28 @@ def test_ids_lead_to_the_points_and_back() -> None:
 def test_headers_stay_in_view_and_rows_can_be_filtered() -> None:
     sheet = load_workbook(io.BytesIO(CONTENT))["Compliance matrix"]
     assert sheet.freeze_panes == "B5"
-    assert sheet.auto_filter.ref == f"A4:AB{4 + len(REPORT.tables[0].rows)}"
+    assert sheet.auto_filter.ref == f"A4:AB{4 + len(REPORT.table('matrix').rows)}"
     assert sheet["A4"].value == "Requirement" and sheet["A6"].alignment.indent == 1
+
+
+def test_sheets_print_in_landscape_and_no_smaller_than_can_be_read() -> None:
+    book = load_workbook(io.BytesIO(CONTENT))
+    across = {}
+    for sheet in book:
+        assert sheet.page_setup.orientation == "landscape" and sheet.page_setup.paperSize == 9
+        assert sheet.sheet_properties.pageSetUpPr.fitToPage and sheet.page_setup.fitToHeight == 0
+        assert sheet.print_title_rows == "$4:$4" and sheet.print_title_cols == "$A:$A"
+        across[sheet.title] = int(sheet.page_setup.fitToWidth or 1)
+    assert across["Summary"] == 1 and across["Compliance matrix"] == 3
+
+
+def test_rows_are_as_high_as_their_text() -> None:
+    words = "as many words as take five lines in a column of fourteen"
+    sheet = load_workbook(io.BytesIO(xlsx.render(small_report(ReportCell(text=words))))).worksheets[0]
+    assert sheet.row_dimensions[5].height == 15 * 5
+    assert sheet.row_dimensions[4].height in (None, 15)
+    endless = load_workbook(io.BytesIO(xlsx.render(small_report(ReportCell(text=words * 20))))).worksheets[0]
+    assert endless.row_dimensions[5].height == 15 * xlsx.MOST_LINES
 
 
 def test_more_rows_than_a_sheet_holds_go_on_the_next(monkeypatch: pytest.MonkeyPatch) -> None:
@@ -143,9 +165,6 @@ def test_sheet_names_are_short_allowed_and_told_apart() -> None:
 
 @pytest.mark.desktop
 def test_an_office_program_opens_it_and_shows_the_same(tmp_path: Path) -> None:
-    import shutil
-    import subprocess
-
     office = shutil.which("libreoffice") or shutil.which("soffice")
     if office is None:
         pytest.skip("LibreOffice is not installed")
@@ -160,3 +179,25 @@ def test_an_office_program_opens_it_and_shows_the_same(tmp_path: Path) -> None:
     for row in REPORT.tables[0].rows:
         for cell in row.cells:
             assert cell.text.split("\n")[0] in lines, cell.text
+
+
+@pytest.mark.desktop
+def test_an_office_program_prints_what_a_board_asks_first_on_one_page(tmp_path: Path) -> None:
+    office = shutil.which("libreoffice") or shutil.which("soffice")
+    if office is None or shutil.which("pdftotext") is None:
+        pytest.skip("LibreOffice or pdftotext (poppler) is not installed")
+    (tmp_path / "report.xlsx").write_bytes(xlsx.render(Report(title="R", tables=(REPORT.table("matrix"),))))
+    profile = f"-env:UserInstallation=file://{tmp_path / 'profile'}"
+    subprocess.run(
+        [office, profile, "--headless", "--convert-to", "pdf", "report.xlsx"],
+        cwd=tmp_path, check=True, timeout=180, capture_output=True,
+    )  # fmt: skip
+    said = subprocess.run(
+        ["pdftotext", "-layout", "report.pdf", "-"],
+        cwd=tmp_path, check=True, timeout=60, capture_output=True, text=True,
+    ).stdout  # fmt: skip
+    pages = said.rstrip("\f").split("\f")
+    assert len(pages) == 3 and "Page 1 of 3" in pages[0]
+    row = next(line for line in pages[0].splitlines() if "pa_bench.xlsx · Bench 1 · D9" in line)
+    assert "PA-1" in row and "failing" in row and "non-compliant" in row and "8 of 9" in row
+    assert all("PA-1" in page for page in pages), "what a row is about stands on every page"

@@ -10,7 +10,7 @@ from specflow.model.finding import Finding, Severity
 from specflow.model.report import CellTone, ReportCell, ReportTable
 from specflow.reports.about import CAUTION, EXPOSURE_CAUTION, INVENTED, about_table, cautions
 from specflow.reports.evidence import evidence_table
-from specflow.reports.findings import findings_table
+from specflow.reports.findings import by_subject, findings_table
 from specflow.reports.matrix import compliance_matrix
 from specflow.reports.points import points_count, points_table
 from specflow.reports.status import (
@@ -19,6 +19,7 @@ from specflow.reports.status import (
     in_tree_order,
     points_sentence,
     status_table,
+    summary_table,
 )
 from tests import harbour
 from tests.builders import a_project, a_snapshot
@@ -75,6 +76,19 @@ def test_the_matrix_counts_failing_and_missing_apart(matrix: ReportTable) -> Non
 def test_findings_are_counted_without_regard_to_case_of_ids(matrix: ReportTable) -> None:
     assert cells(matrix, "PA-1")["findings"].text == "1 error"
     assert cells(matrix, "PA-2")["findings"].text == "–"
+
+
+def test_the_count_of_findings_leads_to_the_first_of_them(matrix: ReportTable) -> None:
+    assert cells(matrix, "PA-1")["findings"].link == "findings/pa-1"
+    assert cells(matrix, "PA-2")["findings"].link == ""
+
+
+def test_what_a_board_asks_stands_first_in_the_matrix(matrix: ReportTable) -> None:
+    assert [column.title for column in matrix.columns[:13]] == [
+        "Requirement", "Title", "State", "Compliance", "Points proved", "Failing", "Without evidence", "Undecided",
+        "Guarded margin", "Governed at", "Item", "Governing cell", "Findings",
+    ]  # fmt: skip
+    assert not any(column.detail for column in matrix.columns[:13])
 
 
 def test_the_same_figures_stand_in_status_and_matrix(matrix: ReportTable) -> None:
@@ -137,6 +151,16 @@ def test_findings_lead_to_the_row_they_are_about() -> None:
     assert table.rows[0].cells[0].tone is CellTone.BAD
 
 
+def test_findings_about_one_thing_stand_side_by_side_worst_first() -> None:
+    rest = [
+        FINDING.model_copy(update={"subject": code, "rule": rule})
+        for code, rule in (("B", "x"), ("PA-1", "y"))
+    ]
+    assert [(one.subject, one.rule) for one in by_subject([FINDING, *rest])] == [
+        ("pa-1", "failing"), ("PA-1", "y"), ("B", "x"),
+    ]  # fmt: skip
+
+
 def test_about_names_the_inputs_by_hash_and_reads_no_clock() -> None:
     table = about_table(SNAPSHOT, RESULTS, harbour.DICTIONARY)
     said = dict(zip(texts(table, "name"), texts(table, "value"), strict=True))
@@ -171,6 +195,20 @@ def test_totals_print_their_denominators() -> None:
     ), "20 + 0 + 22 + 1 are 43: nothing is counted twice, and nothing is said of it"
     counts = close_out_totals(RESULTS, ORDERED)
     assert sum(row.cells[1].number or 0 for row in counts.rows) == 8
+
+
+def test_the_summary_adds_up_on_every_axis() -> None:
+    table = summary_table(RESULTS, ORDERED)
+    counts: dict[str, float] = {}
+    for row in table.rows:
+        counts[row.cells[0].text] = counts.get(row.cells[0].text, 0) + (row.cells[2].number or 0)
+    assert counts["Compliance"] == counts["Close-out"] == 8
+    points = {
+        row.cells[1].text: row.cells[2].text for row in table.rows if row.cells[0].text == "Required points"
+    }
+    assert points == {
+        "proved": "28 of 52", "failing": "4 of 52", "without evidence": "23 of 52", "undecided": "1 of 52",
+    }  # fmt: skip
 
 
 def test_the_state_stands_beside_the_requirement() -> None:
