@@ -11,6 +11,7 @@ from typing import TypeVar, cast
 
 from specflow.model.base import Document, code_key
 from specflow.model.block import Block, Item
+from specflow.model.budget_standing import BudgetStanding
 from specflow.model.evidence import EvidenceColumns, EvidenceTable
 from specflow.model.nouns import NOUN_BY_DOCUMENT
 from specflow.model.project import Project
@@ -141,11 +142,13 @@ class Results:
     """What is computed from a snapshot: the status of every requirement, by its key, and points in words.
 
     ``as_of`` is the date of judgement (ISO), an explicit input; ``unmatched`` are tables that serve no requirement.
+    ``budgets`` holds what was found of budgets that are allocated, by their key.
     """
 
     as_of: str
     statuses: Mapping[str, RequirementStatus] = field(default_factory=dict)
     unmatched: Mapping[str, str] = field(default_factory=dict)
+    budgets: Mapping[str, BudgetStanding] = field(default_factory=dict)
 
     def of(self, requirement: str) -> RequirementStatus:
         """Return the status of one requirement; KeyError when it was not computed."""

@@ -4,6 +4,9 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
+from specflow.errors import ExpressionError
+from specflow.limits import limit_difference, parse_limit
+from specflow.model.base import code_key
 from specflow.model.block import Tier
 from specflow.model.budget import Allocation, Budget
 from specflow.model.requirement import Requirement
@@ -89,8 +92,8 @@ def outdated_allocation(facts: Facts) -> Iterator[Found]:
     """An allocation was made from a parent or a budget that has changed since.
 
     Why: the share below may no longer add up to what is promised above.
-    Fails: the allocation comes from revision 1 of the parent; the parent is at revision 2.
-    Passes: the allocation names the present revisions of its parent and of its budget.
+    Fails: the allocation comes from revision 1 of the parent; the parent is at revision 2. Or a line was changed.
+    Passes: the allocation names the present revisions of its parent and of its budget, which still serves the parent.
     Do: compute the allocation again, or confirm it against the present revisions.
     """
     for allocation in facts.snapshot.all(Allocation):
@@ -102,10 +105,73 @@ def outdated_allocation(facts: Facts) -> Iterator[Found]:
         made_from = allocation.budget_revision
         if budget is not None and made_from is not None and made_from < budget.revision:
             older.append(f"revision {made_from} of the budget {budget.id}, now {budget.revision}")
+        served = None if budget is None else {code_key(code) for code in budget.requirements}
+        if not older and served is not None and code_key(allocation.parent) not in served:
+            older.append(f"the budget {allocation.budget}, which no longer serves {allocation.parent}")
         if older:
             message = f"{allocation.parent} → {allocation.child} was made from {' and '.join(older)}"
             related = (allocation.parent, allocation.child)
             yield Found(allocation.id, message, origin=allocation.origin, related=related)
+
+
+def allocation_differs(facts: Facts) -> Iterator[Found]:
+    """A block carries another limit than its budget gave, and nobody said why.
+
+    Why: the shares no longer add up to what the budget was closed with, and nobody decided that.
+    Fails: the budget gave the amplifier a noise figure of at most 1.5 dB; its requirement says 1.8 dB.
+    Passes: the requirement carries what was given, or the allocation states the reason for another limit.
+    Do: allocate again, or give the reason with specflow allocate --by-hand ... --because.
+    """
+    for allocation, child, moved in _moved_limits(facts):
+        if not allocation.manual_reason:
+            message = f"{child.id} carries {child.limit.text}, the budget gave {allocation.proposed}: {moved}"
+            yield Found(allocation.id, message, origin=allocation.origin, related=(child.id,))
+
+
+def allocation_by_hand(facts: Facts) -> Iterator[Found]:
+    """A block carries a limit given by hand instead of what its budget gave.
+
+    Why: whoever closes the budget next has to know whose decision that was, and why.
+    Fails: the amplifier got 1.8 dB instead of 1.5 dB, because the supplier offers no better.
+    Passes: the requirement carries what the budget gave.
+    Do: nothing, as long as the reason holds; else allocate again.
+    """
+    for allocation, child, moved in _moved_limits(facts):
+        if allocation.manual_reason:
+            message = (
+                f"{child.id} carries {child.limit.text} by hand, the budget gave {allocation.proposed} ({moved}): "
+                f"{allocation.manual_reason}"
+            )
+            yield Found(allocation.id, message, origin=allocation.origin, related=(child.id,))
+
+
+def closure_not_shown(facts: Facts) -> Iterator[Found]:
+    """A budget is allocated, and it is not shown that the system holds with every block at its worst allowed bound.
+
+    Why: all blocks may pass and the system still fail.
+    Fails: gains have only lower limits: more gain passes, and spoils the linearity of the chain.
+    Passes: with every block at the bound that hurts most, every limit of the budget holds.
+    Do: give the missing side, tighten what lacks, or allocate the budget again; specflow allocate shows the test.
+    """
+    for standing in facts.results.budgets.values():
+        if standing.closes is not True:
+            budget = facts.snapshot.find(Budget, standing.budget)
+            origin = budget.origin if budget is not None else None
+            yield Found(standing.budget, standing.sentence, origin=origin)
+
+
+def _moved_limits(facts: Facts) -> Iterator[tuple[Allocation, Requirement, str]]:
+    """Yield allocations whose child carries another limit than the budget gave, with the difference in words."""
+    for allocation in facts.snapshot.all(Allocation):
+        child = facts.snapshot.find(Requirement, allocation.child)
+        if child is None or not allocation.proposed:
+            continue
+        try:
+            moved = limit_difference(parse_limit(allocation.proposed), child.limit)
+        except ExpressionError:
+            continue  # written by an older version; there is nothing to compare with
+        if moved:
+            yield allocation, child, moved
 
 
 def _compliance(requirement: Requirement, facts: Facts) -> Compliance | None:

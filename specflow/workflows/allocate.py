@@ -11,6 +11,7 @@ from specflow.budgets.allotment import Allotment, BlockParameter
 from specflow.budgets.apportion import apportion
 from specflow.budgets.closure import Closure, child_ends, closure_test
 from specflow.budgets.effort import Strain, least_effort
+from specflow.budgets.following import NoLonger, no_longer_following
 from specflow.budgets.probe import Probe
 from specflow.budgets.serving import targets_of_lines
 from specflow.changes import diff, due_revision
@@ -74,7 +75,10 @@ class Proposal:
 
 @dataclass(frozen=True)
 class AllocatePreview:
-    """What accepting would change, the closure test of what is proposed, and what binds."""
+    """What accepting would change, the closure test of what is proposed, and what binds.
+
+    ``outdated`` are the stored allocations that no longer follow; accepting makes them follow again.
+    """
 
     budget: Budget
     way: str
@@ -84,6 +88,7 @@ class AllocatePreview:
     strains: tuple[Strain, ...]
     notes: tuple[str, ...]
     changes: Sequence[Change]
+    outdated: tuple[NoLonger, ...]
     project_revision: int
 
 
@@ -141,6 +146,7 @@ def propose(
         strains,
         (*notes, *closure.notes),
         diff(snapshot, documents),
+        no_longer_following(stored, snapshot, {code_key(one.child.id): one.proposed for one in proposals}),
         snapshot.revision,
     )
 

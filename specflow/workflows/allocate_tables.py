@@ -91,9 +91,18 @@ def strains_table(preview: AllocatePreview) -> ReportTable:
     return table("effort", "Effort", intro, ("Line", "Harder by", "Effort"), rows)
 
 
+def outdated_table(preview: AllocatePreview) -> ReportTable:
+    """Return the stored allocations that no longer follow, with the reasons."""
+    rows = [plain_row(one.allocation, one.allocation, "; ".join(one.reasons)) for one in preview.outdated]
+    intro = "accepting the proposals makes them follow again"
+    return table("outdated", "Allocations that no longer follow", intro, ("Allocation", "Because"), rows)
+
+
 def preview_tables(preview: AllocatePreview) -> list[ReportTable]:
     """Return all tables of a preview."""
     tables = [proposals_table(preview), closure_table(preview.closure)]
+    if preview.outdated:
+        tables.append(outdated_table(preview))
     return [*tables, strains_table(preview)] if preview.strains else tables
 
 
@@ -127,6 +136,9 @@ def preview_as_json(preview: AllocatePreview) -> dict[str, Any]:
             {"line": one.line, "harder_db": one.harder_db, "effort": one.effort} for one in preview.strains
         ],
         "reserves": [one.model_dump(mode="json") for one in preview.budget.reserves],
+        "outdated": [
+            {"allocation": one.allocation, "reasons": list(one.reasons)} for one in preview.outdated
+        ],
         "notes": list(preview.notes),
         "changes": [
             change.model_dump(mode="json", include={"noun", "id", "action", "fields"})

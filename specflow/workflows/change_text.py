@@ -18,13 +18,15 @@ from pydantic import ValidationError
 
 from specflow.errors import DocumentError, SpecflowError
 from specflow.importers.sheets.line_values import CellContext, read_line_value
-from specflow.limits import parse_limit
+from specflow.limits import limit_inputs, parse_limit
 from specflow.model.base import Document, code_key
 from specflow.model.budget import Budget, BudgetLine, BudgetPosition
 from specflow.model.budget_line import Distribution, LineTolerance, Meaning
+from specflow.model.conditions import ConditionsSet
+from specflow.model.declared import DeclaredValue
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Snapshot
-from specflow.parameters import Dictionary
+from specflow.parameters import Dictionary, suits
 from specflow.units import convert, parse_quantity, parse_unit, to_tolerance, tolerance_unit
 from specflow.workflows.budget_lines import line_named
 
@@ -75,20 +77,34 @@ def _changed(
     if isinstance(budget, Budget) and rest:
         return _of_budget(budget, rest, dictionary)
     if isinstance(requirement, Requirement):
-        return _of_requirement(requirement, rest, dictionary)
+        return _of_requirement(requirement, rest, dictionary, snapshot)
     if requirement is None and budget is None:
         raise DocumentError(f"{code} is neither a requirement nor a budget", hint=_SHAPES)
     raise DocumentError("the change does not say what changes", hint=_SHAPES)
 
 
-def _of_requirement(requirement: Requirement, rest: str, dictionary: Dictionary) -> Requirement:
+def _of_requirement(
+    requirement: Requirement, rest: str, dictionary: Dictionary, snapshot: Snapshot
+) -> Requirement:
     word, _, limit = rest.partition(" ")
     if word.casefold() != "limit" or not limit.strip(" ="):
         raise DocumentError(f"of a requirement the limit may be tried, not {rest!r}", hint=_SHAPES)
     text = limit.strip().removeprefix("= ").strip()
-    read = parse_limit(
-        text, parameter=dictionary.get(requirement.quantity.parameter), unit_hint=requirement.limit.unit
-    )
+    parameter = dictionary.get(requirement.quantity.parameter)
+    read = parse_limit(text, parameter=parameter, unit_hint=requirement.limit.unit)
+    if parameter is not None and read.unit and not suits(parameter, read.unit):
+        raise DocumentError(
+            f"the limit is in {read.unit}, {parameter.title} is in {parameter.unit}",
+            hint="write it in a unit of the same kind",
+        )
+    conditions = snapshot.find(ConditionsSet, requirement.conditions)
+    known = {one.name for one in conditions.dimensions} if conditions is not None else set()
+    known |= {value.name for value in snapshot.all(DeclaredValue)}
+    missing = sorted(limit_inputs(read) - known)
+    if missing and not limit_inputs(requirement.limit) >= set(missing):
+        raise DocumentError(
+            f"nothing supplies {missing[0]}", hint="write a number with its unit, or a name that is declared"
+        )
     return requirement.model_copy(update={"limit": read})
 
 

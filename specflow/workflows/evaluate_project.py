@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import date
 from functools import cached_property
 
+from specflow.model.budget import Budget
 from specflow.model.finding import Finding
 from specflow.model.parameter import Parameter
 from specflow.model.snapshot import Results, Snapshot
@@ -27,10 +28,17 @@ class Evaluation:
     @cached_property
     def findings(self) -> Sequence[Finding]:
         """What the rules report, worst first."""
-        # Status does not need the rules; loading them only here keeps it quick.
+        # Status needs neither the rules nor the budgets; loading them only here keeps it quick.
         from specflow.rules import run_rules
 
-        return run_rules(self.snapshot, self.results, self.dictionary)
+        return run_rules(self.snapshot, self._with_budgets(), self.dictionary)
+
+    def _with_budgets(self) -> Results:
+        if not self.snapshot.all(Budget):
+            return self.results
+        from specflow.workflows.budget_standing import budget_standings
+
+        return replace(self.results, budgets=budget_standings(self.snapshot, self.dictionary))
 
 
 def evaluate_project(store: ProjectStore, as_of: date) -> Evaluation:

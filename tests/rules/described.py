@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import date
 from typing import Any
 
@@ -38,6 +38,7 @@ from specflow.parameters import Dictionary, load_dictionary
 from specflow.rules import run_rules
 from specflow.units import Reading, converter, parse_quantity, parse_reading, parse_unit
 from specflow.verification import evaluate
+from specflow.workflows.budget_standing import budget_standings
 from tests.builders import a_snapshot
 
 Fields = Mapping[str, Any]
@@ -68,7 +69,8 @@ def findings_of(description: Fields) -> list[Finding]:
     """Return what the rules report about a described project."""
     snapshot, as_of = described(description)
     dictionary = load_dictionary()
-    return run_rules(snapshot, evaluate(snapshot, dictionary, as_of=as_of), dictionary)
+    results = evaluate(snapshot, dictionary, as_of=as_of)
+    return run_rules(snapshot, replace(results, budgets=budget_standings(snapshot, dictionary)), dictionary)
 
 
 def described(description: Fields) -> tuple[Snapshot, date]:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from datetime import date
 from pathlib import Path
 
 import pytest
@@ -9,15 +10,20 @@ import pytest
 from specflow.errors import ConflictError, DocumentError
 from specflow.model.budget import Allocation, Budget, Reserve
 from specflow.model.requirement import Requirement
+from specflow.store import ProjectStore
 from specflow.workflows.allocate import (
     AllocateOptions,
     ByHand,
     accept_allocation,
     preview_allocation,
 )
+from specflow.workflows.evaluate_project import evaluate_project
 from specflow.workflows.solve_budget import solve_budget
+from specflow.workflows.try_change import keep_trial, try_changes
 from tests.budgets import receiver
 from tests.builders import editing
+
+AS_OF = date(2026, 6, 1)
 
 
 def test_proposals_become_requirements_with_their_links(tmp_path: Path) -> None:
@@ -117,3 +123,27 @@ def test_solving_a_line_for_both_limits(tmp_path: Path) -> None:
     assert solved.solution.at_least.requirement == "SYS-NF"
     assert solved.solution.at_most.requirement == "SYS-IP"
     assert len(solved.table.rows) == 3
+
+
+def test_a_changed_line_limit_or_child_marks_what_no_longer_follows(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        accept_allocation(store, preview_allocation(store, "RX", AllocateOptions("equal")), by="A. Invented")
+        assert not _codes(store) & {"outdated-allocation", "closure-not-shown", "allocation-differs"}
+        keep_trial(
+            store,
+            try_changes(store, ["RX LNA gain = 15 dB", "MIX-IIP3 limit >= 5 dBm"], AS_OF),
+            by="A. Invented",
+            reason="another part",
+        )
+        assert _codes(store) >= {"outdated-allocation", "closure-not-shown", "allocation-differs"}
+        again = preview_allocation(store, "RX", AllocateOptions("equal"))
+        reasons = {one.child: " | ".join(one.reasons) for one in again.outdated}
+        assert "made from revision 1 of RX, now 2" in reasons["LNA-NOISE-FIGURE"]
+        assert "the budget gives 14.5 dB..15.5 dB now" in reasons["LNA-GAIN"]
+        assert "MIX-IIP3 carries >= 5 dBm" in reasons["MIX-IIP3"]
+        accept_allocation(store, again, by="A. Invented")
+        assert not _codes(store) & {"outdated-allocation", "closure-not-shown", "allocation-differs"}
+
+
+def _codes(store: ProjectStore) -> set[str]:
+    return {finding.rule for finding in evaluate_project(store, AS_OF).findings}
