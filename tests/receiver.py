@@ -54,6 +54,8 @@ UNITS = {
     "eirp": "dBm",
     "output_backoff": "dB",
     "sfdr": "dB",
+    "refsens": "dBm",
+    "aclr": "dB",
 }
 SMALL = ("noise_figure", "g_over_t")
 AIR = a_conditions_set(
@@ -94,6 +96,7 @@ def a_receiver(*names: str, **fields: Any) -> Budget:
         "title": "Receiver",
         "requirements": tuple(f"R-{name}" for name in served),
         "bandwidth_hz": 1e6,
+        "channel_spacing_hz": 1.25e6,
         "input_level": -60.0,
         "conditions": "CS-AIR",
     }

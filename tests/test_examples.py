@@ -24,9 +24,11 @@ from specflow.model.verdict import CloseOut, Compliance, Label, RequirementStatu
 from specflow.parameters import load_dictionary
 from specflow.store import create_project, open_project
 from specflow.workflows.attach import Decision, accept_attach, preview_attach
+from specflow.workflows.budget_outcome import HowToCompute, budget_outcome
 from specflow.workflows.demo import Demo, build_demo, examples_folder
 from specflow.workflows.evaluate_project import Evaluation, evaluate_project
 from specflow.workflows.load_workbook import accept_load, preview_load
+from specflow.workflows.show_budget import budget_named
 from tests.builders import a_snapshot
 
 HERE = Path(__file__).parents[1] / "examples"
@@ -119,6 +121,55 @@ def test_the_ferry_has_the_size_that_is_promised(evaluation: Evaluation) -> None
 def test_the_workbook_loads_without_any_finding() -> None:
     for workbook in HERE.glob("*/*-requirements.xlsx"):
         assert read_workbook(workbook, a_snapshot(), load_dictionary()).findings == []
+
+
+BUDGETS = {
+    # nominal margin at the worst point, where that is, share of the largest contributor in %
+    "B-RX-GT": ("UT-GOT-1", 0.26, "17.7 GHz, +55 °C ambient", "RX-LNA", 63),
+    "B-RX-NF": ("RXA-NF-1", 0.32, "17.7 GHz, +55 °C ambient", "RX-LNA", 88),
+    "B-TX-EIRP": ("UT-EIRP-1", 0.48, "27.5 GHz, +55 °C ambient, beam θ 0°, beam φ 0°", "", 0),
+    "B-EVM": ("UT-EVM-1", 1.83, "", "TXA", 78),
+}
+
+
+@pytest.mark.parametrize("code", BUDGETS)
+def test_the_budgets_stand_as_told(evaluation: Evaluation, code: str) -> None:
+    """The margins of the table in the README, and who has the largest share there."""
+    requirement, margin, where, block, share = BUDGETS[code]
+    budget = budget_named(evaluation.snapshot, code)
+    outcome = budget_outcome(budget, evaluation.snapshot, evaluation.dictionary, HowToCompute(ways=()))
+    (served,) = outcome.served
+    assert served.requirement.id == requirement
+    assert served.smallest_margin == pytest.approx(margin, abs=0.005)
+    assert where in outcome.places[served.worst]
+    shares = outcome.quantities[0].shares
+    if shares is not None:
+        largest = int(shares[:, served.worst].argmax())
+        assert outcome.positions[largest].block == block
+        assert 100 * shares[largest, served.worst] == pytest.approx(share, abs=0.5)
+
+
+def test_the_lna_on_the_cold_plate_is_warmer_than_the_radome_in_the_air(evaluation: Evaluation) -> None:
+    """The trap of budgets: ambient taken for baseplate. The radome makes noise at +55 °C, the feed at +73 °C."""
+    budget = budget_named(evaluation.snapshot, "B-RX-GT")
+    outcome = budget_outcome(budget, evaluation.snapshot, evaluation.dictionary, HowToCompute(ways=()))
+    kelvin = {
+        one.label: outcome.temperature_k[row, outcome.place] for row, one in enumerate(outcome.positions)
+    }
+    assert kelvin["Radome"] == pytest.approx(55 + 273.15)
+    assert kelvin["Element feed"] == pytest.approx(73 + 273.15)
+    lna = next(one for one in outcome.lines if one.line.block == "RX-LNA" and one.figure == "noise_figure")
+    assert lna.value[outcome.place] == pytest.approx(1.5 + 0.007 * (73 - 41))
+
+
+def test_the_demo_exports_its_budgets(demo: Demo) -> None:
+    with ZipFile(demo.folder / "ferry-compliance.xlsx") as book:
+        names = book.read("xl/workbook.xml").decode()
+    page = (demo.folder / "ferry-compliance.html").read_text("utf-8")
+    for code in BUDGETS:
+        assert f'name="Budget {code}"' in names
+        assert f'id="budget-{code}"' in page
+    assert page.count("<svg ") >= 2 * len(BUDGETS)
 
 
 def test_the_failing_corner_governs_its_requirement(evaluation: Evaluation) -> None:
@@ -314,3 +365,6 @@ def test_the_readme_names_every_file_and_marks_it_invented() -> None:
     for name in WRITTEN:
         if name.parts[0] == "ferry":
             assert name.name in text, name
+    for code, (requirement, margin, *_) in BUDGETS.items():
+        row = next(line for line in text.splitlines() if line.startswith(f"| `{code}`"))
+        assert f"`{requirement}`" in row and f"+{margin}" in row

@@ -70,9 +70,7 @@ def value_words(line: BudgetLine) -> str:
             words = f"as recorded in {table}"
         case TouchstoneTrace(file=file, entry=entry):
             words = f"|{entry}| of {file}"
-    drifts = "".join(
-        f", {one.slope:+g} for each {one.dimension_unit} of {one.dimension}" for one in line.drifts
-    )
+    drifts = "".join(f", {one.slope:+g} for each {_step(one)} of {one.dimension}" for one in line.drifts)
     tolerance = tolerance_words(line)
     return f"{words}{drifts}{f', {tolerance}' if tolerance else ''}"
 

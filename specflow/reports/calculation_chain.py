@@ -84,6 +84,10 @@ class ChainTable:
             self._fix("k", "Boltzmann constant", BOLTZMANN, "J/K", "0.000000E+00")
         if budget.bandwidth_hz is not None:
             self._fix("bandwidth", "Noise bandwidth", budget.bandwidth_hz, "Hz", "#,##0.###")
+        if budget.channel_spacing_hz is not None:
+            self._fix(
+                "spacing", "Spacing of the adjacent channel", budget.channel_spacing_hz, "Hz", "#,##0.###"
+            )
         self.row += 1
 
     def _fix(self, key: str, title: str, value: float, unit: str, format: str = "0.00##") -> None:

@@ -8,8 +8,11 @@ from specflow.reports.calculation_chain import BOLTZMANN, T0, ChainTable
 from specflow.reports.calculation_grid import Term
 
 
-def quantity_term(chain: ChainTable, parameter: str, row: int) -> Term:
-    """Return a quantity with the chain cut off behind a position, from the columns of the chain."""
+def quantity_term(chain: ChainTable, parameter: str, row: int) -> Term | None:
+    """Return a quantity with the chain cut off behind a position, from the columns of the chain.
+
+    None for a quantity that this sheet does not calculate.
+    """
     if not chain.is_cascade:
         return chain.own("amount_sum", row)
     match parameter:
@@ -45,7 +48,21 @@ def quantity_term(chain: ChainTable, parameter: str, row: int) -> Term:
         case "sfdr":
             free = chain.own("iip3_sum", row) - _floor(chain, row)
             return Term(f"2/3*({free.text})", 2.0 / 3.0 * free.value)
-    raise KeyError(parameter)
+        case "aclr":
+            return _leakage(chain, row)
+    return None
+
+
+def _leakage(chain: ChainTable, row: int) -> Term:
+    """2·(OIP3 - level) and the constant of the gap between the channels, -10·log((1.5 - s)³/3)."""
+    width, spacing = chain.fixed["bandwidth"], chain.fixed["spacing"]
+    start = spacing.value / width.value - 0.5
+    gap = Term(
+        f"10*LOG10((1.5-({spacing.text}/{width.text}-0.5))^3/3)",
+        10.0 * math.log10((1.5 - start) ** 3 / 3.0),
+    )
+    apart = chain.own("iip3_sum", row) + chain.own("gain_sum", row) - chain.own("level_sum", row)
+    return Term(f"2*({apart.text})", 2.0 * apart.value) - gap
 
 
 def _temperature(chain: ChainTable, row: int) -> Term:

@@ -78,7 +78,7 @@ class _Sheet:
         at, grid = self.chain.row, self.grid
         last = len(self.outcome.positions) - 1
         grid.text(at, 1, self.named(quantity.parameter))
-        hand = grid.formula(at, 3, quantity_term(self.chain, quantity.parameter, last))
+        hand = self._by_hand(at, 3, quantity, last)
         tool = grid.number(at, 4, float(quantity.result[self.place]), CellLook.TOOL, "0.0000")
         self._difference(at, 5, hand, tool)
         grid.text(at, 6, quantity.unit)
@@ -91,6 +91,14 @@ class _Sheet:
             self.chain.row += 1
         self.chain.row += not quantity.served
 
+    def _by_hand(self, at: int, column: int, quantity: QuantityOutcome, row: int) -> Term:
+        """Put a quantity as a formula; where the sheet has none for it, say so."""
+        term = quantity_term(self.chain, quantity.parameter, row)
+        if term is not None:
+            return self.grid.formula(at, column, term)
+        self.grid.text(at, column, "not in this sheet", CellLook.NOTE)
+        return Term("", math.nan)
+
     def _margin(self, hand: Term, lower: float, upper: float, reserve: float, margin: float) -> None:
         at, grid = self.chain.row, self.grid
         sides = []
@@ -101,7 +109,7 @@ class _Sheet:
             sides.append(Term(f"{hand.text}-{low.text}", hand.value - low.value))
         if math.isfinite(upper):
             sides.append(Term(f"{high.text}-{hand.text}", high.value - hand.value))
-        if not sides or math.isnan(margin):
+        if not sides or math.isnan(margin) or math.isnan(hand.value):
             return
         least = min(term.value for term in sides) - kept.value
         by_hand = grid.formula(
@@ -126,9 +134,7 @@ class _Sheet:
             self.grid.text(self.chain.row, 1, position_words(self.outcome, row))
             for number, one in enumerate(self.outcome.quantities):
                 column = 3 + 3 * number
-                hand = self.grid.formula(
-                    self.chain.row, column, quantity_term(self.chain, one.parameter, row)
-                )
+                hand = self._by_hand(self.chain.row, column, one, row)
                 value = float(one.cumulative[row, self.place])
                 tool = self.grid.number(self.chain.row, column + 1, value, CellLook.TOOL, "0.0000")
                 self._difference(self.chain.row, column + 2, hand, tool)

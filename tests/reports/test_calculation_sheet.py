@@ -3,9 +3,12 @@
 from __future__ import annotations
 
 import re
+from dataclasses import replace
 
 import pytest
 
+from specflow.budgets import quantities
+from specflow.model.budget import Law
 from specflow.model.formula_sheet import CellLook, FormulaCell, FormulaSheet
 from specflow.reports.budget import titles
 from specflow.reports.calculation_grid import cell_name, plain
@@ -46,6 +49,18 @@ def test_every_quantity_by_hand_is_what_the_tool_computes(intermodulation: str) 
     # 18 results, their margins, and the 18 cumulative columns where both have a value
     assert len(found) >= len(ALL) * (positions - 2) + 2 * len(ALL)
     assert max(found) < 1e-9
+
+
+def test_no_quantity_of_a_cascade_is_left_out() -> None:
+    assert set(quantities(Law.CASCADE)) == set(ALL)
+
+
+def test_a_quantity_that_the_sheet_does_not_know_is_said_to_be_missing() -> None:
+    found = receiver.outcome(how=NOMINAL)
+    strange = tuple(replace(one, parameter="something_new") for one in found.quantities)
+    made = calculation_sheet(replace(found, quantities=strange), 0, NAMED)
+    assert sum(cell.text == "not in this sheet" for cell in cells(made)) == 2 * (1 + len(receiver.STAGES))
+    assert differences(made) == []
 
 
 def test_a_formula_holds_numbers_references_and_functions_only() -> None:
