@@ -16,7 +16,7 @@ from specflow.importers.measured.located import LocatedTable
 from specflow.importers.measured.meaning import read_meanings
 from specflow.importers.measured.pivot import stack
 from specflow.importers.measured.rejects import Rejects
-from specflow.importers.measured.result import ColumnReading, MeasuredTable, Role
+from specflow.importers.measured.result import ColumnReading, MeasuredTable, Question, Role
 from specflow.importers.measured.selection import select_rows
 from specflow.importers.measured.stated import PERSON, Stated, collect
 from specflow.importers.measured.subject import find_block, item_name, item_notes
@@ -127,7 +127,8 @@ def _ask_about_columns(work: TableWork) -> None:
             )
     if _lies_on_its_side(work):
         remedy = "turn it (copy, paste special, transpose): one row of headers, one reading a row"
-        work.ask("", table.place, "the table lies on its side, with its headers in the first column", remedy)
+        what = "the table lies on its side, with its headers in the first column"
+        work.questions.insert(0, Question("", table.place, what, remedy))
         return
     for column in table.unnamed:
         cells = table.cells(column)

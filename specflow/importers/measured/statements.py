@@ -14,6 +14,7 @@ from specflow.importers.readers import Grid, Value, is_blank, looks_numeric
 
 _LIKE_A_READING = re.compile(r"^[<>≤≥=~+\-−±]*\s*[.,]?[0-9]")
 _MOST_TEXTS = 50
+_MOST_WORDS = 2000
 
 
 def is_reading(value: Value) -> bool:
@@ -26,14 +27,30 @@ def is_reading(value: Value) -> bool:
 def statement_rows(grid: Grid, named: Sequence[ColumnCells], outside: Sequence[ColumnCells]) -> list[int]:
     """Give the rows that hold nothing but keys with their values, and begin under a column of readings or beside them.
 
-    Under a column of words (items, modes) a word is no key. ``named`` are the columns with a header.
+    Under a column of words (items, modes) a word is a key only in a row that is hardly filled. ``named`` are the
+    columns with a header.
     """
     found: set[int] = set()
     for cells in (*filter(_holds_readings, named), *outside):
         for row in cells.odd:
             if isinstance(cells.value(row), str) and row not in grid.comment_rows and _states(grid, row):
                 found.add(row)
-    return sorted(found)
+    return sorted(found.union(_among_words(grid, named[0], len(named)) if named else ()))
+
+
+def _among_words(grid: Grid, cells: ColumnCells, columns: int) -> list[int]:
+    """Rows of two cells, the first a key, in a table of more columns that begins with words: ``Ambient (°C) | 85``."""
+    if columns <= 2 or not cells.odd or len(cells.distinct) > _MOST_WORDS or _holds_readings(cells):
+        return []
+    keys = {text for text in cells.distinct if isinstance(text, str) and _is_key(text.split(":")[0])}
+    rows = [row for row in cells.odd if cells.value(row) in keys] if keys else []
+    return [
+        row
+        for row in rows
+        if row not in grid.comment_rows
+        and sum(not is_blank(value) for value in grid.row(row)) <= 2
+        and _states(grid, row)
+    ]
 
 
 def statement_text(grid: Grid, row: int) -> str:

@@ -265,3 +265,10 @@ def test_a_table_on_its_side_is_told_in_one_question(tmp_path: Path) -> None:
     rows = [["DUT", "LNA-1"], [], ["f (GHz)", 27.5, 28, 30], ["Gain (dB)", 20, 19, 18], ["NF (dB)", 1, 2, 3]]
     asked = questions(one_table(book(tmp_path / "a.xlsx", rows), stated={"block": "LNA"}))
     assert "lies on its side" in asked and "transpose" in asked and "numbers without a header" not in asked
+
+
+def test_a_condition_among_rows_that_begin_with_items_is_asked_about(tmp_path: Path) -> None:
+    rows = [["Ambient", "23 °C"], ["DUT", "f (GHz)", "Gain (dB)"], ["LNA-1", 27.5, 20]]
+    rows += [["Ambient (°C)", 85], ["LNA-1", 27.5, 18]]
+    table = one_table(book(tmp_path / "a.xlsx", rows), stated={})
+    assert "'Ambient (°C): 85 °C' stands among the rows" in questions(table)
