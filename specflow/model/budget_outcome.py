@@ -124,6 +124,7 @@ class WayOutcome:
     worst: int = -1
     probability: str = ""
     assumes: str = ""
+    means: str = ""
     refused: str = ""
 
 

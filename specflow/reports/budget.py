@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterable, Sequence
 
 import numpy as np
 
@@ -245,16 +245,23 @@ def ways_table(outcome: BudgetOutcome, named: Named) -> ReportTable:
     return ReportTable(
         key="ways",
         title="Tolerances, way by way",
-        intro=_assumptions(outcome),
+        intro=assumptions([outcome]),
         columns=WAY_COLUMNS,
         rows=tuple(_way_row(outcome, one) for one in rows),
     )
 
 
-def _assumptions(outcome: BudgetOutcome) -> str:
-    told = dict.fromkeys((one.way.value, one.assumes) for one in outcome.ways if not one.refused)
-    said = "; ".join(f"{way}: {assumes}" for way, assumes in told)
+def assumptions(outcomes: Iterable[BudgetOutcome]) -> str:
+    """Say what each way takes for granted."""
+    told = dict.fromkeys(
+        (one.way.value, one.assumes) for outcome in outcomes for one in outcome.ways if not one.refused
+    )
+    said = "; ".join(f"{way}: {assumes}" for way, assumes in sorted(told, key=_way_order))
     return f"The ways answer different questions, none replaces another. What each assumes: {said}."
+
+
+def _way_order(told: tuple[str, str]) -> int:
+    return list(Way).index(Way(told[0]))
 
 
 def _way_row(outcome: BudgetOutcome, one: WayOutcome) -> ReportRow:
@@ -272,7 +279,7 @@ def _way_row(outcome: BudgetOutcome, one: WayOutcome) -> ReportRow:
         id=one.requirement,
         cells=(
             ReportCell(text=one.requirement),
-            ReportCell(text=one.way.value),
+            ReportCell(text=f"{one.way.value}, {one.means}" if one.means else one.way.value),
             text(interval(one.low, one.high, one.unit) if one.unit else ""),
             margin(one.margin, one.margin_unit),
             text(outcome.places[one.worst] if one.worst >= 0 else ""),

@@ -61,7 +61,7 @@ _ASSUMES = {
     Way.NOMINAL: "every line at its figure",
     Way.WORST_CASE: "every line at its worse end at once, whatever the others do; k·σ at the k·σ stated",
     Way.RSS: "lines independent unless a correlation is stated, law near to linear over the tolerances "
-    f"(bend below {MOST_BEND:g} of the sum)",
+    f"(bend below {MOST_BEND:g} of the sum); of limits it is neither a k·σ nor guaranteed",
     Way.MONTE_CARLO: "the distributions and correlations of the lines as stated; one specimen at all conditions",
 }
 
@@ -301,16 +301,13 @@ def _worst_ways(found: WorstCase) -> list[WayOutcome]:
 
 def _rss_ways(found: Rss) -> list[WayOutcome]:
     return [
-        _between(Way.RSS, one.parameter, held, f"{_ASSUMES[Way.RSS]}; the range is {_rss_words(one.means)}")
+        replace(
+            _between(Way.RSS, one.parameter, held, _ASSUMES[Way.RSS]),
+            means="of limits" if one.means == "limits" else f"± {one.means.replace('sigma', 'σ')}",
+        )
         for one in found.outputs
         for held in one.served
     ]
-
-
-def _rss_words(means: str) -> str:
-    if means == "limits":
-        return "the root sum of limits, neither a k·σ nor guaranteed"
-    return f"± {means.replace('sigma', 'σ')}"
 
 
 def _refused(way: Way, nominal: WayOutcome, error: CalculationError) -> WayOutcome:

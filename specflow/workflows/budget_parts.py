@@ -9,7 +9,7 @@ from specflow.model.budget import Budget
 from specflow.model.budget_outcome import BudgetOutcome
 from specflow.model.formula_sheet import FormulaSheet
 from specflow.model.report import ReportPicture, ReportTable
-from specflow.reports.budget import Named, cumulative_table, slopes_table, titles, ways_table
+from specflow.reports.budget import Named, assumptions, cumulative_table, slopes_table, titles, ways_table
 from specflow.reports.budget_list import budgets_table
 from specflow.reports.calculation_sheet import calculation_sheet
 from specflow.reports.pictures import budget_pictures
@@ -56,7 +56,8 @@ def _tolerances(known: Sequence[BudgetOutcome], named: Named) -> Iterator[Report
     if found:
         rows = tuple(row for table in found for row in table.rows)
         title = "Budget tolerances"
-        yield found[0].model_copy(update={"rows": rows, "title": title, "key": "budget-tolerances"})
+        update = {"rows": rows, "title": title, "key": "budget-tolerances", "intro": assumptions(known)}
+        yield found[0].model_copy(update=update)
 
 
 def _keyed(outcome: BudgetOutcome, named: Named) -> tuple[ReportTable, ReportTable]:

@@ -72,7 +72,7 @@ def test_the_same_seed_gives_the_same_answer_and_another_one_another(command: Co
 
 def test_only_the_asked_methods_are_gone(command: Command, project: Path) -> None:
     told = json.loads(command("budget", "B-RX", "--method", "rss", "--json").out)
-    assert [row["way"] for row in told["ways"]] == ["nominal", "root sum of squares"] * 2
+    assert [row["way"] for row in told["ways"]] == ["nominal", "root sum of squares, of limits"] * 2
     assert all(picture["kind"] != "distribution" for picture in told["pictures"])
 
 
