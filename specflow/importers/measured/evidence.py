@@ -23,7 +23,8 @@ from specflow.importers.measured.subject import find_block, item_name, item_note
 from specflow.importers.measured.values import column_name, read_values
 from specflow.importers.measured.words import fill_down, read_dates, read_words
 from specflow.importers.measured.work import TableWork
-from specflow.importers.readers import column_letter
+from specflow.importers.readers import address, column_letter
+from specflow.model.base import code_key
 from specflow.model.columns import TextColumn
 from specflow.model.evidence import EvidenceColumns, EvidenceTable
 from specflow.model.requirement import Method, Stage
@@ -54,6 +55,7 @@ def read_table(located: LocatedTable, context: Context, person: Mapping[str, str
     work = TableWork(table, context, mapping, stated, rejects)
     work.notes += [remark.words for remark in table.stepped_over]
     _ask_about_remarks(work)
+    _ask_about_groups(work)
     work.meanings = read_meanings(table, context, mapping, stated)
     work.questions += stated.questions
     work.questions += [meaning.question for meaning in work.meanings if meaning.question]
@@ -115,6 +117,22 @@ def _ask_about_remarks(work: TableWork) -> None:
             work.ask(
                 "", cell, f"{remark.text[:60]!r} stands among the rows and may hold for those below", remedy
             )
+
+
+def _ask_about_groups(work: TableWork) -> None:
+    """Ask about a cell merged over some of the headers that states a condition or names an item: "+85 °C"."""
+    table = work.table
+    columns = {header.column for header in table.headers}
+    for area in table.grid.merged:
+        over = {column for column in columns if area.first_column <= column <= area.last_column}
+        if area.first_row != table.header_row - 1 or area.first_row != area.last_row or len(over) < 2:
+            continue
+        text = str(table.grid.value(area.first_row, area.first_column)).strip()
+        says = states_something(text) or code_key(text) in work.context.snapshot.items_by_name
+        if says and over != columns:
+            what = f"{text[:60]!r} is merged over some of the headers and may hold for their columns ({area})"
+            remedy = "say it in each of these headers, give it a column of its own, or empty the cell"
+            work.ask("", address(area.first_row, area.first_column), what, remedy)
 
 
 def _ask_about_columns(work: TableWork) -> None:

@@ -272,3 +272,10 @@ def test_a_condition_among_rows_that_begin_with_items_is_asked_about(tmp_path: P
     rows += [["Ambient (°C)", 85], ["LNA-1", 27.5, 18]]
     table = one_table(book(tmp_path / "a.xlsx", rows), stated={})
     assert "'Ambient (°C): 85 °C' stands among the rows" in questions(table)
+
+
+def test_a_condition_merged_over_some_headers_is_asked_about(tmp_path: Path) -> None:
+    for said in ("+85 °C", "LNA-2"):
+        rows = [["T_amb", "23 °C"], [None, said, None], ["f (GHz)", "Gain (dB)", "NF (dB)"], [27.5, 20, 1]]
+        path = book(tmp_path / "a.xlsx", rows, change=lambda sheet: sheet.merge_cells("B2:C2"))
+        assert f"B2: '{said}' is merged over some of the headers" in questions(one_table(path))
