@@ -7,7 +7,7 @@ end of their tolerance, so that the shares hold for every block that keeps its o
 from __future__ import annotations
 
 import math
-from collections.abc import Collection, Sequence
+from collections.abc import Collection, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Literal
 
@@ -16,6 +16,7 @@ from numpy.typing import NDArray
 
 from specflow.budgets.allotment import (
     Allotment,
+    BlockParameter,
     ends_of,
     joined,
     rounded_safely,
@@ -63,6 +64,7 @@ def apportion(
     *,
     way: Way = "equal",
     fixed: Collection[str] = (),
+    at_nominal: bool = False,
     values: Overrides | None = None,
 ) -> Apportionment:
     """Return what each block may have so that all limits of a budget hold at all places, reserves kept back.
@@ -70,8 +72,9 @@ def apportion(
     ``fixed`` names blocks that keep their figures besides the passive ones. Every share is in the terms in which its
     law adds: excess noise at the input, distortion, power, squared error; gains and losses share the margin in dB.
 
-    Raises InfeasibleError where what is taken first leaves nothing to share, with by how much; SpecflowError as
-    ``evaluate_budget``.
+    ``at_nominal`` shares at nominal figures instead of the worst ends of what is taken first: the textbook's shares,
+    with which the system need not close. Raises InfeasibleError where what is taken first leaves nothing to share, with
+    by how much; SpecflowError as ``evaluate_budget``.
     """
     probe = Probe.of(budget, snapshot, dictionary, values=values)
     plan = plan_shares(probe, fixed)
@@ -84,14 +87,19 @@ def apportion(
     ):
         law = contribution(target.output, budget)
         if law is None:
-            found, said = share_plainly(probe, target, numbers, ends_of(probe, known), way)
+            found, said = share_plainly(probe, target, numbers, _ends(probe, known, at_nominal), way)
         else:
-            found, said = _shared(probe, target, law, numbers, ends_of(probe, known), way)
+            found, said = _shared(probe, target, law, numbers, _ends(probe, known, at_nominal), way)
         shares += found
         binding += said
         known |= {one.key: one for one in map(rounded_safely, joined(shares, f"budget {budget.id}"))}
     closure = closure_test(probe, known)
     return Apportionment(budget, way, tuple(known.values()), closure, tuple(binding), (*notes, *plan.notes))
+
+
+def _ends(probe: Probe, known: Mapping[BlockParameter, Allotment], at_nominal: bool) -> list[Ends | None]:
+    """Return where the lines that are not shared stand: at the ends of what they take, or at their figures."""
+    return [None] * len(probe.chain.lines) if at_nominal else ends_of(probe, known)
 
 
 @dataclass(frozen=True, slots=True)

@@ -8,6 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from specflow.budgets.closure import closure_of_children
+from specflow.budgets.corners import worst_case
 from specflow.budgets.evaluate import nominal_result
 from specflow.budgets.probe import Probe
 from specflow.budgets.result import Served
@@ -24,13 +25,17 @@ Children = Mapping[str, Sequence[Requirement]]
 
 @dataclass(frozen=True, slots=True)
 class LimitState:
-    """What is left of one limit: its smallest margin in ``unit`` and where; ``closes`` as ``Served.closes``."""
+    """What is left of one limit: its smallest margin in ``unit`` and where; ``closes`` as ``Served.closes``.
+
+    ``worst_case`` is the smallest margin with every line at the end of its tolerance that hurts.
+    """
 
     requirement: str
     margin: float
     unit: str
     words: str
     closes: bool | None
+    worst_case: float
 
 
 @dataclass(frozen=True, slots=True)
@@ -75,7 +80,8 @@ def _limit_of(state: BudgetState | None, name: str) -> LimitState | None:
 def _same(first: LimitState | None, second: LimitState | None) -> bool:
     if first is None or second is None:
         return first is second
-    near = bool(np.isclose(first.margin, second.margin, rtol=0, atol=1e-9, equal_nan=True))
+    margins = (first.margin, first.worst_case), (second.margin, second.worst_case)
+    near = bool(np.isclose(*margins, rtol=0, atol=1e-9, equal_nan=True).all())
     return near and (first.unit, first.words, first.closes) == (second.unit, second.words, second.closes)
 
 
@@ -115,6 +121,7 @@ def budget_state(
     try:
         probe = Probe.of(budget, snapshot, dictionary)
         result = nominal_result(probe.prepared)
+        adverse = _adverse(budget, snapshot, dictionary)
         closure = closure_of_children(probe, children) if children else None
     except SpecflowError as error:
         return BudgetState(budget.id, law, len(budget.chain), error=str(error))
@@ -122,15 +129,22 @@ def budget_state(
         budget.id,
         law,
         len(budget.chain),
-        tuple(_limit(one, probe) for one in result.served),
+        tuple(_limit(one, probe, adverse.get(one.requirement.id, np.nan)) for one in result.served),
         None if closure is None else closure.closes,
         "" if closure is None else closure.sentence,
     )
 
 
-def _limit(one: Served, probe: Probe) -> LimitState:
+def _adverse(budget: Budget, snapshot: Snapshot, dictionary: Dictionary) -> Mapping[str, float]:
+    """Return the smallest margin of each limit at the worst corner of all tolerances."""
+    found = worst_case(budget, snapshot, dictionary)
+    served = (one.adverse for output in found.outputs for one in output.served)
+    return {one.requirement.id: one.smallest_margin for one in served}
+
+
+def _limit(one: Served, probe: Probe, worst: float) -> LimitState:
     words = probe.words(one.worst) if one.worst >= 0 else ""
-    return LimitState(one.requirement.id, one.smallest_margin, one.margin_unit, words, one.closes)
+    return LimitState(one.requirement.id, one.smallest_margin, one.margin_unit, words, one.closes, worst)
 
 
 def alternatives(

@@ -25,6 +25,12 @@ ProportionalOption = Annotated[
 EffortOption = Annotated[
     bool, typer.Option("--least-effort", help="Least total effort over all limits of the budget together.")
 ]
+NominalOption = Annotated[
+    bool,
+    typer.Option(
+        "--nominal", help="Share at nominal gains and losses, not at the worst end of their tolerances."
+    ),
+]
 ReserveOption = Annotated[
     list[str] | None,
     typer.Option(
@@ -77,6 +83,7 @@ def allocate(
     equal: EqualOption = False,
     proportional: ProportionalOption = False,
     least_effort: EffortOption = False,
+    nominal: NominalOption = False,
     reserve: ReserveOption = None,
     fix: FixOption = None,
     free_gain: FreeOption = None,
@@ -101,7 +108,7 @@ def allocate(
         _solve(budget, solve, project, as_json=as_json)
         return
     way = _way(equal=equal, proportional=proportional, least_effort=least_effort)
-    options = _options(way, reserve, fix, free_gain, weight, by_hand, because)
+    options = _options(way, reserve, fix, free_gain, weight, by_hand, because, nominal=nominal)
     with open_store(project, read_only=dry_run) as store:
         preview = preview_allocation(store, budget, options)
         if not as_json:
@@ -136,6 +143,8 @@ def _options(
     weight: list[str] | None,
     by_hand: list[str] | None,
     because: str,
+    *,
+    nominal: bool,
 ) -> AllocateOptions:
     from specflow.workflows.allocate import AllocateOptions
     from specflow.workflows.allocate_text import read_by_hand, read_reserve, read_weight
@@ -147,6 +156,7 @@ def _options(
         free_gain or (),
         dict(read_weight(one) for one in weight or ()),
         [read_by_hand(one, because) for one in by_hand or ()],
+        nominal,
     )
 
 

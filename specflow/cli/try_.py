@@ -58,7 +58,7 @@ def try_(
     REQUIREMENT limit LIMIT;
     BUDGET LINE = VALUE, with the line as 'LNA gain' or 'position 2 gain';
     BUDGET LINE tolerance = 0.5 dB limits uniform (or 0.3 dB 2 sigma, or none);
-    BUDGET position 2 count = 4, passive = yes, or removed;
+    BUDGET add LINE = VALUE; BUDGET position 2 block = ATT, count = 4, passive = yes, or removed;
     BUDGET input level = -60 dBm, noise source = 50 K, bandwidth = 20 MHz.
 
     Several changes are tried together. Nothing is stored, unless --keep asks for it.

@@ -45,7 +45,10 @@ class ByHand:
 
 @dataclass(frozen=True, slots=True)
 class AllocateOptions:
-    """How to share. ``reserves`` are kept back first and stored in the budget with their holders."""
+    """How to share. ``reserves`` are kept back first and stored in the budget with their holders.
+
+    ``at_nominal`` shares at nominal gains and losses, not at the worst end of their tolerances.
+    """
 
     way: Way = "proportional"
     reserves: Sequence[Reserve] = ()
@@ -53,6 +56,7 @@ class AllocateOptions:
     free_gains: Sequence[str] = ()
     weights: Mapping[str, float] = field(default_factory=dict)
     by_hand: Sequence[ByHand] = ()
+    at_nominal: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -155,6 +159,12 @@ def _allotted(
     budget: Budget, snapshot: Snapshot, dictionary: Dictionary, options: AllocateOptions
 ) -> tuple[Sequence[Allotment], Sequence[str], tuple[Strain, ...], tuple[str, ...]]:
     if options.way == "least effort":
+        if options.at_nominal:
+            raise DocumentError(
+                "the least effort is found at the worst ends of the tolerances",
+                where=f"budget {budget.id}",
+                hint="take equal or proportional shares at nominal figures",
+            )
         found = least_effort(
             budget,
             snapshot,
@@ -171,8 +181,12 @@ def _allotted(
             where=f"budget {budget.id}",
             hint="equal and proportional shares keep the gains as they are",
         )
-    shares = apportion(budget, snapshot, dictionary, way=options.way, fixed=options.fixed)
-    return shares.allotments, shares.binding, (), shares.notes
+    shares = apportion(
+        budget, snapshot, dictionary, way=options.way, fixed=options.fixed, at_nominal=options.at_nominal
+    )
+    where = "nominal figures" if options.at_nominal else "the worst ends of their tolerances"
+    note = f"what is not shared stands at {where}"
+    return shares.allotments, shares.binding, (), (note, *shares.notes)
 
 
 def _with_reserves(budget: Budget, reserves: Sequence[Reserve]) -> Budget:

@@ -16,7 +16,7 @@ _POSITION = re.compile(r"(?:position\s+)?(\d+)\s+(.+)", re.IGNORECASE)
 
 def line_named(budget: Budget, text: str, dictionary: Dictionary) -> BudgetLine:
     """Return the line that a person names. DocumentError where none or several are meant, with those there are."""
-    place, parameter = _parts(budget, text)
+    place, parameter = named_parts(budget, text)
     keys = parameter_keys(parameter, dictionary)
     found = [
         line for line in budget.lines if code_key(line.parameter) in keys and _stands(line, budget, place)
@@ -49,7 +49,7 @@ def parameter_keys(text: str, dictionary: Dictionary) -> set[str]:
     return keys
 
 
-def _parts(budget: Budget, text: str) -> tuple[str, str]:
+def named_parts(budget: Budget, text: str) -> tuple[str, str]:
     """Part a name into a place (order of the position, block or name) and a parameter."""
     plain = " ".join(text.split())
     numbered = _POSITION.fullmatch(plain)

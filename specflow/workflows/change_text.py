@@ -4,6 +4,7 @@ LNA-NF-1 limit <= 1.5 dB
 RX LNA gain = 23 dB
 RX position 2 gain = table frequency: 17.7 GHz 23.5; 20.2 GHz 24.5 dB linear
 RX LNA gain tolerance = +0.5/-0.3 dB limits uniform
+RX add FIL noise_figure = 2 dB   RX position 5 block = ATT
 RX position 2 count = 4          RX FIL passive = no          RX position 2 removed
 RX input level = -60 dBm         RX noise source = 50 K
 """
@@ -28,7 +29,7 @@ from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Snapshot
 from specflow.parameters import Dictionary, suits
 from specflow.units import convert, parse_quantity, parse_unit, to_tolerance, tolerance_unit
-from specflow.workflows.budget_lines import line_named
+from specflow.workflows.budget_lines import line_named, named_parts, parameter_keys
 
 _SHAPES = (
     "write 'REQUIREMENT limit <= 1.5 dB', 'BUDGET BLOCK PARAMETER = 23 dB', "
@@ -41,7 +42,7 @@ _TOLERANCE = re.compile(
 )
 _SIGMA = re.compile(rf"(?P<k>{_NUMBER})\s*(?:sigma|σ)", re.IGNORECASE)
 _POSITION = re.compile(
-    r"^(?:position\s+)?(?P<place>\S+)\s+(?P<what>count|passive|removed)\s*(?:=\s*(?P<value>.+))?$",
+    r"^(?:position\s+)?(?P<place>\S+)\s+(?P<what>count|passive|removed|block)\s*(?:=\s*(?P<value>.+))?$",
     re.IGNORECASE,
 )
 _TEMPERATURES = ("temperature_baseplate", "temperature_case", "temperature_board", "temperature_ambient")
@@ -109,6 +110,8 @@ def _of_requirement(
 
 
 def _of_budget(budget: Budget, rest: str, dictionary: Dictionary) -> Budget:
+    if rest.casefold().startswith("add "):
+        return _added(budget, rest[len("add ") :], dictionary)
     if position := _POSITION.match(rest):
         return _of_position(budget, position["place"], position["what"].casefold(), position["value"] or "")
     name, equals, value = (part.strip() for part in rest.partition("="))
@@ -124,6 +127,47 @@ def _of_budget(budget: Budget, rest: str, dictionary: Dictionary) -> Budget:
     return _with_line(budget, line, value=read.value, unit=read.unit, drifts=read.drifts)
 
 
+def _added(budget: Budget, rest: str, dictionary: Dictionary) -> Budget:
+    """Add a line to a position that is there."""
+    name, equals, value = (part.strip() for part in rest.partition("="))
+    place, parameter = named_parts(budget, name)
+    if not equals or not value or not parameter:
+        raise DocumentError(f"nothing can be made of {rest!r}", hint=_SHAPES)
+    position = _position(budget, place)
+    keys = sorted(parameter_keys(parameter, dictionary))
+    found = next((one for key in keys if (one := dictionary.get(key))), None)
+    if found is None:
+        raise DocumentError(f"the parameter {parameter} is not known", hint="take one of the dictionary")
+    read = read_line_value(value, CellContext("", _TEMPERATURES, ("frequency",)))
+    line = BudgetLine(
+        position=position.order,
+        block=position.block,
+        parameter=found.key,
+        value=read.value,
+        unit=read.unit,
+        drifts=read.drifts,
+    )
+    return Budget.model_validate(dict(budget) | {"lines": (*budget.lines, line)})
+
+
+def _with_block(budget: Budget, place: str, block: str) -> Budget:
+    """Put another block at a position, or a new position into the chain."""
+    if not block:
+        raise DocumentError("the block is not named", hint="write 'position 2 block = ATT'")
+    orders = {one.order for one in budget.chain}
+    if place.isdecimal() and int(place) not in orders:
+        added = (*budget.chain, BudgetPosition(order=int(place), block=block))
+        return Budget.model_validate(dict(budget) | {"positions": added})
+    order = _position(budget, place).order
+    chain = tuple(
+        one.model_copy(update={"block": block}) if one.order == order else one for one in budget.chain
+    )
+    lines = tuple(
+        one.model_copy(update={"block": block}) if one.position == order else one for one in budget.lines
+    )
+    return Budget.model_validate(dict(budget) | {"positions": chain, "lines": lines})
+
+
 def _with_line(budget: Budget, line: BudgetLine, **fields: Any) -> Budget:
     changed = line.model_copy(update=fields)
     lines = tuple(changed if one is line else one for one in budget.lines)
@@ -131,6 +175,8 @@ def _with_line(budget: Budget, line: BudgetLine, **fields: Any) -> Budget:
 
 
 def _of_position(budget: Budget, place: str, what: str, value: str) -> Budget:
+    if what == "block":
+        return _with_block(budget, place, value.strip())
     position = _position(budget, place)
     if what == "removed":
         lines = tuple(line for line in budget.lines if line.position != position.order)

@@ -32,6 +32,7 @@ Rows = NDArray[np.intp]
 COMPOSITE_MODEL = "budget "
 _REPRESENTATIVE = (HardwareType.QUALIFICATION, HardwareType.PRODUCTION)
 _OBSERVED = (Method.TEST, Method.DEMONSTRATION)
+_LOSSES = ("insertion_loss", "conversion_loss", "attenuation")
 
 
 @dataclass(frozen=True, slots=True)
@@ -92,7 +93,7 @@ class _Reader:
         """Yield the value columns that record the parameter of a line on its block."""
         for table in self.snapshot.tables_of_block.get(code_key(read.line.block), ()):
             for column in table.values:
-                if code_key(column.quantity.parameter) != code_key(read.line.parameter):
+                if not _records(column, read):
                     continue
                 unlike = self._unlike(read, column)
                 if unlike:
@@ -155,7 +156,7 @@ class _Reader:
             step = converter(source, target, log_factor=factor)
             middle = (recorded.low + recorded.high) / 2.0
             usable = np.isfinite(middle)
-            value = step(np.where(usable, middle, 1.0))
+            value = step(np.where(usable, middle, 1.0)) * _sign(column, read)
             u = self._spread(recorded.u, source, target, middle)
         except UnitError as error:
             self.notes.append(f"{table.id} {column.name} is left out: {error.message}")
@@ -258,6 +259,19 @@ class _Reader:
         except ConditionsError as error:
             self.notes.append(f"{table.id}: its conditions cannot be taken to the system's: {error.message}")
             return recorded
+
+
+def _records(column: ValueColumn, read: ReadLine) -> bool:
+    """Whether a column records what a line states: the same parameter, or a gain where it states a loss."""
+    found, wanted = code_key(column.quantity.parameter), code_key(read.line.parameter)
+    return found == wanted or _sign(column, read) < 0
+
+
+def _sign(column: ValueColumn, read: ReadLine) -> float:
+    """Return -1 for a gain recorded of what a line states as a loss (or the other way), in dB; else 1."""
+    found, wanted = code_key(column.quantity.parameter), code_key(read.line.parameter)
+    turned = (found == "gain" and wanted in _LOSSES) or (wanted == "gain" and found in _LOSSES)
+    return -1.0 if turned and parse_unit(column.unit or "1").is_log else 1.0
 
 
 def _everywhere(places: int, rows: int) -> tuple[Rows, Rows]:

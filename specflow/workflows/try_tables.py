@@ -25,7 +25,7 @@ def trial_tables(trial: Trial) -> list[ReportTable]:
 def _margins(effects: Sequence[BudgetEffect]) -> ReportTable:
     rows = [row for effect in effects for row in _effect_rows(effect)]
     intro = "" if rows else "no margin of a budget would change"
-    titles = ("Budget", "Requirement", "Margin", "Then", "At", "Closure")
+    titles = ("Budget", "Requirement", "Margin", "Then", "Worst case", "Would be", "At", "Closure")
     return table("margins", "Margins that would change", intro, titles, rows)
 
 
@@ -41,6 +41,8 @@ def _effect_rows(effect: BudgetEffect) -> list[ReportRow]:
                 text(name),
                 _margin(first),
                 _margin(second),
+                _worst(first),
+                _worst(second),
                 text(_place(first, second)),
                 text(closure),
             ),
@@ -51,6 +53,10 @@ def _effect_rows(effect: BudgetEffect) -> list[ReportRow]:
 
 def _margin(state: LimitState | None) -> ReportCell:
     return text("") if state is None else margin(state.margin, state.unit)
+
+
+def _worst(state: LimitState | None) -> ReportCell:
+    return text("") if state is None else margin(state.worst_case, state.unit)
 
 
 def _place(first: LimitState | None, second: LimitState | None) -> str:
@@ -108,6 +114,7 @@ def alternatives_table(states: Sequence[BudgetState], requirement: str) -> Repor
                 text(state.law),
                 text(state.positions),
                 _margin(state.limit(requirement)),
+                _worst(state.limit(requirement)),
                 text(_place(None, state.limit(requirement))),
                 text(_others(state, requirement)),
                 text(state.error or state.closure or "no allocation yet"),
@@ -116,7 +123,7 @@ def alternatives_table(states: Sequence[BudgetState], requirement: str) -> Repor
         for state in states
     ]
     intro = "" if rows else "no budget serves it"
-    titles = ("Budget", "Law", "Positions", "Margin", "Worst at", "Other limits", "Closure")
+    titles = ("Budget", "Law", "Positions", "Margin", "Worst case", "Worst at", "Other limits", "Closure")
     return table("alternatives", f"Budgets of {requirement}", intro, titles, rows)
 
 
@@ -177,6 +184,7 @@ def _state(state: BudgetState | None) -> dict[str, Any] | None:
             {
                 "requirement": one.requirement,
                 "margin": _plain(one.margin),
+                "worst_case": _plain(one.worst_case),
                 "unit": one.unit,
                 "at": one.words,
                 "closes": one.closes,

@@ -102,6 +102,20 @@ def test_passive_positions_take_their_share_first_and_the_system_closes() -> Non
     assert 0 <= found.closure.limits[0].smallest < 0.02
 
 
+def test_nominal_shares_are_the_textbook_ones_and_need_not_close() -> None:
+    window = {"gain": {"tolerance": WITHIN}}
+    stages = [
+        {"block": block, "gain": gain, "noise_figure": nf, "more": window}
+        for block, gain, nf in zip("ABCD", GAINS, (1.2, 2.5, 7.0, 4.0), strict=True)
+    ]
+    chain = a_chain(*stages)
+    found = apportion(chain, project_of(chain, limit=at_most(3.0)), DICTIONARY, at_nominal=True)
+    formula = equal_share_noise_figures(3.0, list(GAINS))
+    for block, figure in zip("ABCD", formula, strict=True):
+        assert of(found, block, "noise_figure").high == pytest.approx(float(figure), abs=0.0101)
+    assert found.closure.closes is False
+
+
 def test_exact_gains_that_hurt_on_both_sides_leave_closure_unshown() -> None:
     requirements = [
         a_requirement(

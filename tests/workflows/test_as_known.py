@@ -155,6 +155,23 @@ def test_the_result_is_recorded_as_analysis_with_its_sources(tmp_path: Path) -> 
     assert list(reading.value_low) == pytest.approx(list(found.known.served[0].served.result))
 
 
+def test_a_gain_recorded_of_what_the_budget_calls_a_loss_turns_its_sign(tmp_path: Path) -> None:
+    column = a_value_column("S21", quantity=a_quantity("gain"))
+    table = an_evidence_table("EV-1", block="FIL", values=(column,), conditions=(), method=Method.ANALYSIS)
+    arrays = some_evidence(
+        {"S21": (-2.2, -2.1, -2.0)},
+        conditions=some_columns(temperature_ambient=[-30.0, 20.0, 55.0]),
+        items="",
+        u=0.02,
+    )
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        with_evidence(store, [table], {"EV-1": arrays})
+        found = known_budget(store, "RX", AS_OF)
+    line = next(one for one in found.known.lines if one.read.line.parameter == "insertion_loss")
+    assert list(line.value) == pytest.approx([2.2, 2.1, 2.0])
+    assert line.common[0] == pytest.approx(0.02)
+
+
 def test_nothing_known_is_nothing_to_record(tmp_path: Path) -> None:
     with receiver.make_store(tmp_path / "rx.specflow") as store:
         found = known_budget(store, "RX", AS_OF)

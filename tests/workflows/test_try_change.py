@@ -104,6 +104,28 @@ def test_several_changes_are_tried_together_and_may_be_kept(tmp_path: Path) -> N
     assert requirement is not None and requirement.limit.text == ">= -10 dBm"
 
 
+def test_lines_and_positions_may_be_added(tmp_path: Path) -> None:
+    texts = [
+        "RX position 9 block = IF",
+        "RX add position 9 gain = 3 dB",
+        "RX add position 9 noise figure = 5 dB",
+    ]
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        trial = try_changes(store, [*texts, "RX add position 9 iip3 = 20 dBm"], AS_OF)
+        swapped = try_changes(store, ["RX position 4 block = MIX"], AS_OF)
+    after = trial.budgets[0].after
+    assert after is not None and after.positions == 5 and not after.error
+    assert not swapped.budgets  # the same figures under another name
+
+
+def test_a_tolerance_moves_the_worst_case_only(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        trial = try_changes(store, ["RX LNA gain tolerance = 2 dB limits uniform"], AS_OF)
+    for _, before, after in trial.budgets[0].limits:
+        assert before is not None and after is not None
+        assert after.margin == before.margin and after.worst_case < before.worst_case - 0.01
+
+
 def test_a_position_may_be_taken_out(tmp_path: Path) -> None:
     with receiver.make_store(tmp_path / "rx.specflow") as store:
         trial = try_changes(store, ["RX FIL removed"], AS_OF)
