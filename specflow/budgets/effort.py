@@ -92,8 +92,8 @@ def least_effort(
     """Return the allotments of least total effort that meet all limits at all places together.
 
     ``fixed`` names blocks that keep their figures, ``free_gains`` blocks whose gain may move too, ``weights`` the
-    effort of blocks at their estimate (1 unless said). Raises InfeasibleError when even parts 30 dB harder everywhere do not
-    do, with by how much and where; SpecflowError as ``evaluate_budget``.
+    effort of blocks at their estimate (1 unless said). Raises InfeasibleError when even parts 30 dB harder everywhere
+    do not do, with by how much and where; SpecflowError as ``evaluate_budget``.
     """
     probe = Probe.of(budget, snapshot, dictionary, values=values)
     task = _task(probe, fixed, free_gains, {code_key(name): one for name, one in (weights or {}).items()})
@@ -256,6 +256,7 @@ def _minimised(task: _Task, start: Floats) -> Floats:
     """Minimise over the limits at the places that matter; add the places where others are broken until none is."""
     from scipy import optimize
 
+    minimize: Any = optimize.minimize  # its stubs know only one shape of arguments at a time
     margins = task.margins(start)
     watched = {(row, int(np.argmin(part))) for row, part in enumerate(margins)}
     for _ in range(_ROUNDS):
@@ -265,7 +266,7 @@ def _minimised(task: _Task, start: Floats) -> Floats:
             "constraints": {"type": "ineq", "fun": _margins_at(task, watched)},
             "options": {"maxiter": 300, "ftol": 1e-12},
         }
-        found = optimize.minimize(
+        found = minimize(
             lambda amounts: float(task.efforts(amounts).sum()), start, method="SLSQP", **settings
         )
         harder = np.asarray(found.x, np.float64)
