@@ -41,7 +41,15 @@ MethodOption = Annotated[
         show_default=False,
     ),
 ]
-TrialsOption = Annotated[int, typer.Option("--trials", help="Specimens of the Monte Carlo run.", min=1)]
+TrialsOption = Annotated[
+    int | None,
+    typer.Option(
+        "--trials",
+        help="Specimens of the Monte Carlo run; default: 20000, fewer over very many condition points.",
+        min=1,
+        show_default=False,
+    ),
+]
 SeedOption = Annotated[int, typer.Option("--seed", help="Seed of the Monte Carlo run.", min=0)]
 
 SetOption = Annotated[
@@ -62,7 +70,7 @@ def budget(
     code: CodeArgument = "",
     at: AtOption = "",
     method: MethodOption = None,
-    trials: TrialsOption = 20_000,
+    trials: TrialsOption = None,
     seed: SeedOption = 1,
     settings: SetOption = None,
     reason: ReasonOption = "",
@@ -177,7 +185,7 @@ def _put_pictures(shown: ShownBudget) -> None:
         put("\n".join(picture_lines(picture, width)) + "\n")
 
 
-def _how(method: list[str] | None, trials: int, seed: int) -> HowToCompute:
+def _how(method: list[str] | None, trials: int | None, seed: int) -> HowToCompute:
     from specflow.workflows.budget_outcome import ALL_WAYS, HowToCompute
     from specflow.workflows.show_budget import ways_named
 

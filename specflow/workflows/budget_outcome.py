@@ -56,6 +56,9 @@ from specflow.parameters import Dictionary
 Floats = NDArray[np.float64]
 TRIALS = 20_000
 SEED = 1
+_AFFORDABLE = 5_000_000
+"""Trials times condition points that are drawn unasked: about a second."""
+_LEAST_TRIALS = 1_000
 ALL_WAYS = (Way.WORST_CASE, Way.RSS, Way.MONTE_CARLO)
 _ASSUMES = {
     Way.NOMINAL: "every line at its figure",
@@ -86,12 +89,17 @@ def _silent(text: str) -> None:
 class HowToCompute:
     """Which ways of treating tolerances to go, and the trials and seed of a Monte Carlo run.
 
+    Without ``trials`` 20,000 are drawn, fewer where there are very many condition points (the result says how many).
     Of several ``ways`` one that cannot be gone is kept with the reason; a single one that cannot is an error.
     """
 
     ways: Sequence[Way] = ALL_WAYS
-    trials: int = TRIALS
+    trials: int | None = None
     seed: int = SEED
+
+    def trials_over(self, places: int) -> int:
+        """Return how many trials are drawn over so many condition points."""
+        return self.trials or min(TRIALS, max(_LEAST_TRIALS, _AFFORDABLE // max(places, 1)))
 
 
 def budget_outcome(
@@ -108,7 +116,8 @@ def budget_outcome(
     outcome = _nominal(evaluate_budget(budget, snapshot, dictionary))
     ways = list(_nominal_ways(outcome))
     for way in dict.fromkeys(how.ways):
-        step(f"{way.value}, {how.trials:,} trials" if way is Way.MONTE_CARLO else way.value)
+        trials = how.trials_over(len(outcome.places))
+        step(f"{way.value}, {trials:,} trials" if way is Way.MONTE_CARLO else way.value)
         try:
             outcome, found = _gone(way, outcome, snapshot, dictionary, how)
         except CalculationError as error:
@@ -129,7 +138,8 @@ def _gone(
         case Way.RSS:
             return outcome, _rss_ways(rss(budget, snapshot, dictionary))
         case Way.MONTE_CARLO:
-            drawn = monte_carlo(budget, snapshot, dictionary, trials=how.trials, seed=how.seed)
+            trials = how.trials_over(len(outcome.places))
+            drawn = monte_carlo(budget, snapshot, dictionary, trials=trials, seed=how.seed)
             return _with_chances(outcome, drawn), _chance_ways(drawn)
     return outcome, []
 

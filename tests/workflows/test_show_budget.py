@@ -122,3 +122,10 @@ def test_ways_are_named_as_options_and_as_words() -> None:
     )
     with pytest.raises(SpecflowError, match="no method 'guess'"):
         ways_named(["guess"])
+
+
+def test_very_many_condition_points_are_given_fewer_trials_unless_asked() -> None:
+    assert HowToCompute().trials_over(36) == 20_000
+    assert 1_000 < HowToCompute().trials_over(1_000) < 20_000
+    assert HowToCompute().trials_over(1_000_000) == 1_000
+    assert HowToCompute(trials=7).trials_over(1_000_000) == 7
