@@ -41,4 +41,7 @@ Code = Annotated[str, AfterValidator(clean_code)]
 class Document(BaseModel):
     """A frozen record of the model: what rules and reports read, what is exchanged and what a baseline holds."""
 
-    model_config = ConfigDict(frozen=True, extra="forbid", str_strip_whitespace=True, allow_inf_nan=False)
+    # Of a hundred kinds of document a command needs a few: each builds its validator when it is first used.
+    model_config = ConfigDict(
+        frozen=True, extra="forbid", str_strip_whitespace=True, allow_inf_nan=False, defer_build=True
+    )

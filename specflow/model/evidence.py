@@ -233,6 +233,3 @@ class EvidenceColumns:
     items: TextColumn
     dates: TextColumn | None = None
     extra: Mapping[str, TextColumn] = field(default_factory=dict)
-
-
-EvidenceTable.model_rebuild()

@@ -180,6 +180,3 @@ Expression = Annotated[
     | Choice,
     Field(discriminator="kind"),
 ]
-
-for _document in (Negative, Operation, Call, Compare, Interval, Member, Logic, Not, Choice):
-    _document.model_rebuild()

@@ -309,19 +309,3 @@ class Limit(Document):
     rounding: Rounding | None = None
     test_tolerance: TestTolerance | None = None
     readings: tuple[str, ...] = ()
-
-
-for _document in (
-    Case,
-    Cases,
-    Alternatives,
-    OfQuantity,
-    Gate,
-    PowerSum,
-    MeasuredIn,
-    Allowed,
-    Exceptions,
-    Population,
-    Limit,
-):
-    _document.model_rebuild()

@@ -27,5 +27,5 @@ class Project(Document):
     name: str
     description: str = ""
     invented: bool = False
-    policy: Policy = Policy()
+    policy: Policy = Field(default_factory=Policy)
     revision: int = 1

@@ -84,7 +84,7 @@ class Requirement(Document):
     revision: int = 1
     title: str
     statement: str = ""
-    source: Source = Source()
+    source: Source = Field(default_factory=Source)
     parents: tuple[Code, ...] = ()
     derived_reason: str = ""
     kind: str = "performance"
@@ -99,8 +99,8 @@ class Requirement(Document):
     applicability: str = ""
     not_applicable_reason: str = ""
     not_applicable_approver: str = ""
-    decision_rule: DecisionRule = DecisionRule()
-    provers: Provers = Provers()
+    decision_rule: DecisionRule = Field(default_factory=DecisionRule)
+    provers: Provers = Field(default_factory=Provers)
     met_by_lower_level: bool = False
     needs_allocation: bool | None = None
     rationale: str = ""
