@@ -62,6 +62,7 @@ def ticks(low: float, high: float, most: int = 8) -> list[float]:
 # Levels
 
 
+_NUMBER = 44  # px that a number takes
 _TOP, _LEFT, _RIGHT, _PLOT = 40, 58, 44, 250
 
 
@@ -79,24 +80,25 @@ def _levels(picture: LevelDiagram) -> tuple[int, list[str]]:
 
     longest = max(len(name) for name in picture.stations)
     slanted = longest * _CHARACTER > across - 6
-    below = 30 + (min(longest, 28) * _CHARACTER * 0.62 if slanted else 12)
+    turn = 0 if not slanted else 38 if across > 40 else 62  # degrees
+    below = 30 + (min(longest, 28) * _CHARACTER * math.sin(math.radians(turn)) if slanted else 12)
     parts = [_legend(picture)]
     for value in ticks(low, high):
         parts.append(_stroke(_LEFT, y(value), WIDTH - _RIGHT, y(value)))
         parts.append(_text(_LEFT - 8, y(value) + 4, f"{value:g}", "end", QUIET))
     for place, name in enumerate(picture.stations):
         parts.append(_stroke(x(place), _TOP, x(place), _TOP + _PLOT + 4))
-        parts.append(_station_name(x(place), _TOP + _PLOT + 18, name, slanted=slanted))
+        parts.append(_station_name(x(place), _TOP + _PLOT + 18, name, turn))
     for one in reversed(picture.series):
-        parts.extend(_series(one, x, y))
+        parts.extend(_series(one, x, y, every=max(1, math.ceil(_NUMBER / across))))
     return round(_TOP + _PLOT + below), parts
 
 
-def _station_name(x: float, y: float, name: str, *, slanted: bool) -> str:
+def _station_name(x: float, y: float, name: str, turn: int) -> str:
     shown = name if len(name) <= 28 else name[:27] + "…"
-    if not slanted:
+    if not turn:
         return _text(x, y, shown, "middle")
-    return _text(x + 4, y, shown, "end", INK, f' transform="rotate(-38 {x + 4:.1f} {y:.1f})"')
+    return _text(x + 4, y, shown, "end", INK, f' transform="rotate(-{turn} {x + 4:.1f} {y:.1f})"')
 
 
 def _legend(picture: LevelDiagram) -> str:
@@ -127,14 +129,22 @@ def _mark(one: Series, x: float, y: float) -> str:
     return f'<path d="M{x - 11:.1f} {y:.1f}h22" stroke="{colour}" stroke-width="2.5"/>'
 
 
-def _series(one: Series, x: _Place, y: _Value) -> Iterator[str]:
+def _series(one: Series, x: _Place, y: _Value, *, every: int) -> Iterator[str]:
+    """Draw a line with its marks; numbers stand at each of them, or where they are close at ``every`` so many."""
     known = [(place, value) for place, value in enumerate(one.values) if value is not None]
     for (place, value), (after, next_value) in pairwise(known):
         if after == place + 1 and one.look != "bound":
             yield _stroke(x(place), y(value), x(after), y(next_value), COLOURS[one.look], _dashes(one))
     for place, value in known:
         yield _mark(one, x(place), y(value))
-        yield _label(one, place, x, y)
+        if every == 1:
+            yield _label(one, place, x, y)
+        elif one.look != "bound" and (
+            place % every == 0 or (place == known[-1][0] and place % every > every // 2)
+        ):
+            up = 17 if one.look == "noise" else -8
+            anchor = "middle" if place else "start"
+            yield _text(x(place), y(value) + up, one.texts[place], anchor, COLOURS[one.look], _HALO)
 
 
 def _label(one: Series, place: int, x: _Place, y: _Value) -> str:

@@ -85,6 +85,20 @@ def test_every_value_of_a_level_diagram_is_written_and_higher_is_further_up() ->
     assert heights[1] < heights[2] < heights[0]
 
 
+def test_a_long_chain_has_every_mark_but_not_every_number() -> None:
+    values = tuple(float(place % 7) for place in range(41))
+    long = LevelDiagram(
+        title="t",
+        words="w",
+        unit="dBm",
+        stations=tuple(f"Block {place}" for place in range(41)),
+        series=(Series(name="level", values=values, texts=tuple(f"<{place}>" for place in range(41))),),
+    )
+    numbers = [text for text in texts(long) if text.startswith("<")]
+    assert 10 <= len(numbers) <= 21 and "<0>" in numbers
+    assert sum(1 for _ in drawn(long).iter(f"{NAMESPACE}circle")) == 41 + 1  # and the one of the legend
+
+
 def test_bars_are_as_long_as_their_parts() -> None:
     first, second = (float(one.get("width", "0")) for one in drawn(BARS).iter(f"{NAMESPACE}rect"))
     assert first == pytest.approx(3 * second, rel=1e-2)
