@@ -68,14 +68,14 @@ _ASSUMES = {
     Way.MONTE_CARLO: "the distributions and correlations of the lines as stated; one specimen at all conditions",
 }
 
-_FORMS = {
-    id(AS_IT_IS): LineForm.AS_IT_IS,
-    id(LOSS): LineForm.LOSS,
-    id(TEMPERATURE): LineForm.TEMPERATURE,
-    id(SIGNAL_TO_ERROR): LineForm.SIGNAL_TO_ERROR,
-    id(IMAGE): LineForm.SIGNAL_TO_ERROR,
-    id(CARRIER): LineForm.LEAKAGE,
-    id(PHASE_NOISE): LineForm.PHASE_NOISE,
+FORMS = {
+    AS_IT_IS: LineForm.AS_IT_IS,
+    LOSS: LineForm.LOSS,
+    TEMPERATURE: LineForm.TEMPERATURE,
+    SIGNAL_TO_ERROR: LineForm.SIGNAL_TO_ERROR,
+    IMAGE: LineForm.SIGNAL_TO_ERROR,
+    CARRIER: LineForm.LEAKAGE,
+    PHASE_NOISE: LineForm.PHASE_NOISE,
 }
 
 Step = Callable[[str], None]
@@ -204,7 +204,10 @@ def _spread(array: Floats, result: BudgetResult) -> Floats:
 def _line(read: ReadLine, result: BudgetResult) -> LineOutcome:
     size = result.required.size
     values = np.broadcast_to(read.values, (size,))
+    form = FORMS.get(read.role.form)
     taken = values if read.convert.is_identity else read.convert(values)
+    if form is None:  # a way of taking values that a worksheet has no formula for: it shows what comes of it
+        form, taken = LineForm.AS_IT_IS, read.figure(values)
     factor, offset = of_elements(result.chain, read) if read.role.figure == "amount" else (1.0, 0.0)
     return LineOutcome(
         line=read.line,
@@ -213,7 +216,7 @@ def _line(read: ReadLine, result: BudgetResult) -> LineOutcome:
         taken=np.broadcast_to(taken, (size,)),
         unit=read.role.unit,
         figure=read.role.figure,
-        form=_FORMS[id(read.role.form)],
+        form=form,
         port=read.role.port,
         factor=factor,
         offset=offset,

@@ -8,12 +8,13 @@ from dataclasses import replace
 import pytest
 
 from specflow.budgets import quantities
+from specflow.budgets.forms import CASCADE_ROLES, ERROR_VECTOR_ROLES
 from specflow.model.budget import Law
 from specflow.model.formula_sheet import CellLook, FormulaCell, FormulaSheet
 from specflow.reports.budget import titles
 from specflow.reports.calculation_grid import cell_name, plain
 from specflow.reports.calculation_sheet import calculation_sheet
-from specflow.workflows.budget_outcome import HowToCompute, budget_outcome
+from specflow.workflows.budget_outcome import FORMS, HowToCompute, budget_outcome
 from tests import receiver
 from tests.budgets.chains import a_chain, project_of
 from tests.builders import a_budget, a_budget_line, a_quantity, at_most
@@ -164,3 +165,17 @@ def test_an_ideal_chain_has_no_bound_and_no_difference() -> None:
 @pytest.mark.parametrize(("value", "text"), [(1.0, "1"), (0.5, "0.5"), (-2.0, "-2"), (290.15, "290.15")])
 def test_numbers_in_formulas_are_plain(value: float, text: str) -> None:
     assert plain(value) == text
+
+
+def test_gains_and_losses_of_a_plain_sum_have_their_signs() -> None:
+    lines = (a_budget_line(1, "A", "gain", 20.0), a_budget_line(2, "B", "insertion_loss", 3.0))
+    budget = a_budget(law="sum", lines=lines)
+    found = budget_outcome(budget, project_of(budget, limit=at_most(100)), receiver.DICTIONARY, NOMINAL)
+    made = calculation_sheet(found, 0, NAMED)
+    assert max(differences(made)) < 1e-9
+    assert any(cell.number == pytest.approx(17.0) for cell in cells(made) if cell.formula)
+
+
+def test_every_way_in_which_a_law_takes_a_line_has_a_formula() -> None:
+    forms = {role.form for role in (*CASCADE_ROLES.values(), *ERROR_VECTOR_ROLES.values())}
+    assert forms <= set(FORMS)
