@@ -4,8 +4,8 @@ from __future__ import annotations
 
 import sys
 from typing import Any
+from unicodedata import combining, east_asian_width
 
-from specflow.cli.console import PIPED_WIDTH
 from specflow.model.report import Align, CellTone, Report, ReportTable
 
 STYLES = {
@@ -19,13 +19,55 @@ STYLES = {
 
 def put_table(table: ReportTable) -> None:
     """Print one table to stdout; on a pipe no cell is cut or folded and there are no colours."""
+    if sys.stdout.isatty():
+        _put_on_terminal(table)
+    else:
+        print("\n".join(plain_lines(table)))
+
+
+def plain_lines(table: ReportTable) -> list[str]:
+    """Return the lines of a table without colours, each cell as wide as its column asks; a row is never folded."""
+    grid = [[column.title.split("\n") for column in table.columns]]
+    for row in table.rows:
+        cells = [cell.text.split("\n") for cell in row.cells]
+        if cells and row.depth:
+            cells[0] = ["  " * row.depth + line for line in cells[0]]
+        grid.append(cells)
+    widths = [
+        max(_width(line) for cells in grid for line in cells[place]) for place in range(len(table.columns))
+    ]
+    lines = [table.title] if table.title else []
+    lines += [table.intro, ""] if table.intro else []
+    for cells in grid:
+        for height in range(max(map(len, cells), default=1)):
+            parts = [
+                _set(cell[height] if height < len(cell) else "", width, column.align)
+                for cell, width, column in zip(cells, widths, table.columns, strict=True)
+            ]
+            lines.append("  ".join(parts).rstrip())
+    return lines
+
+
+def _set(text: str, width: int, align: Align) -> str:
+    blanks = " " * (width - _width(text))
+    return blanks + text if align is Align.RIGHT else text + blanks
+
+
+def _width(text: str) -> int:
+    """Return how many places a text takes: marks set on a letter take none, ideographs two (Unicode annex 11)."""
+    if text.isascii():
+        return len(text)
+    wide = sum(east_asian_width(one) in "WF" for one in text)
+    return len(text) + wide - sum(map(bool, map(combining, text)))
+
+
+def _put_on_terminal(table: ReportTable) -> None:
     from rich.console import Console
     from rich.padding import Padding
     from rich.table import Table
     from rich.text import Text
 
-    is_terminal = sys.stdout.isatty()
-    console = Console(width=None if is_terminal else PIPED_WIDTH, highlight=False)
+    console = Console(highlight=False)
     grid = Table(box=None, pad_edge=False, header_style="bold", padding=(0, 2, 0, 0))
     for column in table.columns:
         grid.add_column(
