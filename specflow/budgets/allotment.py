@@ -32,7 +32,8 @@ class Allotment:
     """What one block may have of one parameter, from ``low`` to ``high`` in ``unit``; ±inf where a side is open.
 
     ``is_shared``: it is a share of what a limit leaves; else it is what the block takes first: its figure and its
-    tolerance. ``least`` and ``most`` are the figures that the budget has now. ``words`` say where it comes from.
+    tolerance, or (``is_kept``) the requirement that its block has already. ``least`` and ``most`` are the figures that
+    the budget has now. ``words`` say where it comes from.
     """
 
     block: str
@@ -44,6 +45,7 @@ class Allotment:
     least: float
     most: float
     words: str
+    is_kept: bool = False
 
     @property
     def key(self) -> BlockParameter:
@@ -130,6 +132,7 @@ def taken_first(probe: Probe, numbers: Sequence[int]) -> tuple[list[Allotment], 
 
     A line with a tolerance takes its figure with it, from the least to the most of all places, on the sides that hurt.
     One without takes its figure as a limit where only one side hurts; where both do it is taken as exact, and said.
+    A figure that follows conditions by more than its tolerance gets no limit of one number.
     """
     matters = sides_that_matter(probe)
     found: list[Allotment] = []
@@ -139,6 +142,14 @@ def taken_first(probe: Probe, numbers: Sequence[int]) -> tuple[list[Allotment], 
         if read.role.figure == "source_k":
             continue
         low_hurts, high_hurts = matters[number]
+        tolerance = read.line.tolerance
+        width = 0.0 if tolerance is None else tolerance.minus + tolerance.plus
+        if float(np.ptp(read.values)) > width and (low_hurts or high_hurts):
+            notes.append(
+                f"{read.line.place} differs more between conditions than its tolerance: it is taken as it is at each, "
+                "and no single limit is proposed"
+            )
+            continue
         if moves(read.line):
             ends = bounds(read)
             low = float(ends[0].min()) if low_hurts else -math.inf
@@ -156,6 +167,14 @@ def taken_first(probe: Probe, numbers: Sequence[int]) -> tuple[list[Allotment], 
     return found, notes
 
 
+def kept_first(
+    probe: Probe, numbers: Sequence[int], agreed: Mapping[BlockParameter, Allotment]
+) -> dict[BlockParameter, Allotment]:
+    """Return the bounds that stand already for lines that are not shared."""
+    keys = {key_of(probe.chain.lines[number]) for number in numbers}
+    return {key: one for key, one in agreed.items() if key in keys}
+
+
 def _first(read: ReadLine, low: float, high: float, what: str) -> Allotment:
     values = read.values
     return Allotment(
@@ -171,11 +190,19 @@ def _first(read: ReadLine, low: float, high: float, what: str) -> Allotment:
     )
 
 
-def ends_of(probe: Probe, allotments: Mapping[BlockParameter, Allotment]) -> list[Ends | None]:
-    """Return the ends (n,) of every line by its allotment, None where there is none."""
+def ends_of(
+    probe: Probe, allotments: Mapping[BlockParameter, Allotment], *, with_tolerances: bool = False
+) -> list[Ends | None]:
+    """Return the ends (n,) of every line by its allotment; without one those of its tolerance if asked for, or None."""
     ends: list[Ends | None] = []
+    size = probe.size
     for read in probe.chain.lines:
         one = allotments.get(key_of(read))
-        size = probe.size
-        ends.append(None if one is None else (np.full(size, one.low), np.full(size, one.high)))
+        if one is not None:
+            ends.append((np.full(size, one.low), np.full(size, one.high)))
+        elif with_tolerances and moves(read.line):
+            low, high = bounds(read)
+            ends.append((np.broadcast_to(low, (size,)), np.broadcast_to(high, (size,))))
+        else:
+            ends.append(None)
     return ends

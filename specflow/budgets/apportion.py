@@ -1,7 +1,7 @@
 """Share what a limit leaves over the blocks: equally, or in proportion to what they are estimated at.
 
-Positions that are passive, or said to be fixed, take their share first. Gains that are not shared stand at the worst
-end of their tolerance, so that the shares hold for every block that keeps its own window.
+Positions that are passive, losses in a chain, and blocks said to be fixed take their share first. Gains that are not
+shared stand at the worst end of their tolerance, so that the shares hold for every block that keeps its own window.
 """
 
 from __future__ import annotations
@@ -19,6 +19,7 @@ from specflow.budgets.allotment import (
     BlockParameter,
     ends_of,
     joined,
+    kept_first,
     rounded_safely,
     rounded_widely,
     taken_first,
@@ -28,6 +29,7 @@ from specflow.budgets.chain import Overrides
 from specflow.budgets.closure import Closure, closure_test
 from specflow.budgets.contribution import Contribution, contribution
 from specflow.budgets.figures import Figures
+from specflow.budgets.forms import LOSS
 from specflow.budgets.inverse_figures import figure_of_line, line_value
 from specflow.budgets.plain_shares import share_plainly
 from specflow.budgets.probe import Probe, Target
@@ -65,6 +67,7 @@ def apportion(
     way: Way = "equal",
     fixed: Collection[str] = (),
     at_nominal: bool = False,
+    agreed: Mapping[BlockParameter, Allotment] | None = None,
     values: Overrides | None = None,
 ) -> Apportionment:
     """Return what each block may have so that all limits of a budget hold at all places, reserves kept back.
@@ -72,6 +75,7 @@ def apportion(
     ``fixed`` names blocks that keep their figures besides the passive ones. Every share is in the terms in which its
     law adds: excess noise at the input, distortion, power, squared error; gains and losses share the margin in dB.
 
+    ``agreed`` are bounds that stand already for what is not shared; they are kept instead of figure and tolerance.
     ``at_nominal`` shares at nominal figures instead of the worst ends of what is taken first: the textbook's shares,
     with which the system need not close. Raises InfeasibleError where what is taken first leaves nothing to share, with
     by how much; SpecflowError as ``evaluate_budget``.
@@ -80,6 +84,7 @@ def apportion(
     plan = plan_shares(probe, fixed)
     first, notes = taken_first(probe, plan.first)
     known = {one.key: one for one in map(rounded_widely, joined(first, f"budget {budget.id}"))}
+    known |= kept_first(probe, plan.first, agreed or {})
     shares: list[Allotment] = []
     binding: list[str] = []
     for target, numbers in sorted(
@@ -99,7 +104,9 @@ def apportion(
 
 def _ends(probe: Probe, known: Mapping[BlockParameter, Allotment], at_nominal: bool) -> list[Ends | None]:
     """Return where the lines that are not shared stand: at the ends of what they take, or at their figures."""
-    return [None] * len(probe.chain.lines) if at_nominal else ends_of(probe, known)
+    if at_nominal:
+        return [None] * len(probe.chain.lines)
+    return ends_of(probe, known, with_tolerances=True)
 
 
 @dataclass(frozen=True, slots=True)
@@ -144,6 +151,7 @@ def _sharing(probe: Probe, target: Target, kept: Collection[str]) -> tuple[int, 
         for number, read in enumerate(probe.chain.lines)
         if read.role.figure == figure
         and not probe.chain.positions[read.row].passive
+        and not (figure == "gain" and read.role.form is LOSS)
         and code_key(read.line.block) not in kept
     )
 

@@ -21,6 +21,7 @@ from specflow.budgets.allotment import (
     BlockParameter,
     ends_of,
     joined,
+    kept_first,
     rounded_safely,
     rounded_widely,
     taken_first,
@@ -87,16 +88,19 @@ def least_effort(
     fixed: Collection[str] = (),
     free_gains: Collection[str] = (),
     weights: Mapping[str, float] | None = None,
+    agreed: Mapping[BlockParameter, Allotment] | None = None,
     values: Overrides | None = None,
 ) -> LeastEffort:
     """Return the allotments of least total effort that meet all limits at all places together.
 
     ``fixed`` names blocks that keep their figures, ``free_gains`` blocks whose gain may move too, ``weights`` the
-    effort of blocks at their estimate (1 unless said). Raises InfeasibleError when even parts 30 dB harder everywhere
+    effort of blocks at their estimate (1 unless said), ``agreed`` bounds that stand already for what is not shared.
+    Raises InfeasibleError when even parts 30 dB harder everywhere
     do not do, with by how much and where; SpecflowError as ``evaluate_budget``.
     """
     probe = Probe.of(budget, snapshot, dictionary, values=values)
-    task = _task(probe, fixed, free_gains, {code_key(name): one for name, one in (weights or {}).items()})
+    by_block = {code_key(name): one for name, one in (weights or {}).items()}
+    task = _task(probe, fixed, free_gains, by_block, agreed or {})
     harder = _minimised(task, _start(task))
     shares = [_allotment(task, number, amount) for number, amount in zip(task.numbers, harder, strict=True)]
     rounded = map(rounded_safely, joined(shares, f"budget {budget.id}"))
@@ -157,7 +161,11 @@ class _Task:
 
 
 def _task(
-    probe: Probe, fixed: Collection[str], free_gains: Collection[str], weights: Mapping[str, float]
+    probe: Probe,
+    fixed: Collection[str],
+    free_gains: Collection[str],
+    weights: Mapping[str, float],
+    agreed: Mapping[BlockParameter, Allotment],
 ) -> _Task:
     plan = plan_shares(probe, fixed)
     shared = {number for _, numbers in plan.shared for number in numbers}
@@ -166,7 +174,8 @@ def _task(
     lines = probe.chain.lines
     known, notes = taken_first(probe, [one for one in plan.first if one not in free])
     first = {one.key: one for one in map(rounded_widely, joined(known, f"budget {probe.budget.id}"))}
-    ends = ends_of(probe, first)
+    first |= kept_first(probe, [one for one in plan.first if one not in free], agreed)
+    ends = ends_of(probe, first, with_tolerances=True)
     for number in numbers:
         ends[number] = None
     return _Task(
@@ -199,9 +208,14 @@ def _free(probe: Probe, names: Collection[str]) -> set[int]:
 
 
 def _moved(probe: Probe, read: ReadLine, harder: float) -> Floats:
-    """Return the value of a line that is so many dB harder than its estimate."""
-    figure = read.figure(read.values)
-    kind = read.role.figure
+    """Return the value of a line that is so many dB harder than its estimate.
+
+    A share is one number for all conditions, so it starts from the estimate at the worst of them; a gain keeps its
+    course over conditions.
+    """
+    figure, kind = read.figure(read.values), read.role.figure
+    if kind != "gain":
+        figure = np.atleast_1d(figure.min() if kind in PORTS or _wants_more(probe, kind) else figure.max())
     if kind == "noise_figure":
         moved = decibels(1.0 + (ratio(figure) - 1.0) * ratio(np.array([-harder])))
     elif kind in PORTS or kind == "gain":
@@ -217,10 +231,15 @@ def _moved(probe: Probe, read: ReadLine, harder: float) -> Floats:
 
 def _of_plain(probe: Probe, read: ReadLine, figure: Floats, harder: float) -> Floats:
     """A term of a plain sum: decibels move as they are, towards the limit's good side; amounts are divided."""
-    wants_more = any(np.isfinite(target.bar.lower).any() for target in probe.targets)
+    wants_more = _wants_more(probe, read.role.figure)
     if parse_unit(read.role.unit).is_log:
         return figure + (harder if wants_more else -harder)
     return np.asarray(figure * ratio(np.array([harder if wants_more else -harder])))
+
+
+def _wants_more(probe: Probe, kind: str) -> bool:
+    """Whether the limit on a plain sum is a lower one."""
+    return kind == "amount" and any(np.isfinite(target.bar.lower).any() for target in probe.targets)
 
 
 def _start(task: _Task) -> Floats:

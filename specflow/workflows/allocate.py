@@ -7,7 +7,7 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from typing import Literal
 
-from specflow.budgets.allotment import Allotment, BlockParameter
+from specflow.budgets.allotment import Allotment, BlockParameter, key_of
 from specflow.budgets.apportion import apportion
 from specflow.budgets.closure import Closure, child_ends, closure_test
 from specflow.budgets.effort import Strain, least_effort
@@ -128,9 +128,10 @@ def propose(
     """Return the proposals of a budget of a snapshot."""
     stored = budget_named(snapshot, code)
     budget = _with_reserves(stored, options.reserves)
-    allotments, binding, strains, notes = _allotted(budget, snapshot, dictionary, options)
     probe = Probe.of(budget, snapshot, dictionary)
     serves = targets_of_lines(probe)
+    agreed = _agreed(probe, serves)
+    allotments, binding, strains, notes = _allotted(budget, snapshot, dictionary, options, agreed)
     hands = _hands(snapshot, budget, options.by_hand, allotments)
     proposals = [
         _proposal(one, serves.get(one.key, ()), probe, hands.get(one.key))
@@ -155,8 +156,37 @@ def propose(
     )
 
 
+def _agreed(
+    probe: Probe, serves: Mapping[BlockParameter, tuple[str, ...]]
+) -> Mapping[BlockParameter, Allotment]:
+    """Return what requirements that this budget did not give allow already: what is not shared keeps them."""
+    own = {
+        code_key(link.child)
+        for link in probe.snapshot.all(Allocation)
+        if _is_of(link, probe.budget) and link.proposed
+    }
+    found: dict[BlockParameter, Allotment] = {}
+    for read in probe.chain.lines:
+        key, line, values = key_of(read), read.line, read.values
+        least, most = float(values.min()), float(values.max())
+        blank = Allotment(line.block, line.parameter, line.unit, -math.inf, math.inf, False, least, most, "")
+        child = _known_child(probe.snapshot, probe.budget, blank, serves.get(key, ()))
+        if child is None or code_key(child.id) in own:
+            continue
+        ends = child_ends(probe, read.row, child, line.unit)
+        low, high = float(ends[0].max()), float(ends[1].min())
+        if low <= high:
+            words = f"{child.id} as it stands"
+            found[key] = replace(blank, low=low, high=high, words=words, is_kept=True)
+    return found
+
+
 def _allotted(
-    budget: Budget, snapshot: Snapshot, dictionary: Dictionary, options: AllocateOptions
+    budget: Budget,
+    snapshot: Snapshot,
+    dictionary: Dictionary,
+    options: AllocateOptions,
+    agreed: Mapping[BlockParameter, Allotment],
 ) -> tuple[Sequence[Allotment], Sequence[str], tuple[Strain, ...], tuple[str, ...]]:
     if options.way == "least effort":
         if options.at_nominal:
@@ -172,6 +202,7 @@ def _allotted(
             fixed=options.fixed,
             free_gains=options.free_gains,
             weights=options.weights,
+            agreed=agreed,
         )
         binding = [f"{one.requirement} at {one.words}" for one in found.binding]
         return found.allotments, binding, found.strains, found.notes
@@ -182,7 +213,13 @@ def _allotted(
             hint="equal and proportional shares keep the gains as they are",
         )
     shares = apportion(
-        budget, snapshot, dictionary, way=options.way, fixed=options.fixed, at_nominal=options.at_nominal
+        budget,
+        snapshot,
+        dictionary,
+        way=options.way,
+        fixed=options.fixed,
+        at_nominal=options.at_nominal,
+        agreed=agreed,
     )
     where = "nominal figures" if options.at_nominal else "the worst ends of their tolerances"
     note = f"what is not shared stands at {where}"
@@ -237,9 +274,10 @@ def _is_of(link: Allocation, budget: Budget) -> bool:
 def _proposal(one: Allotment, parents: tuple[str, ...], probe: Probe, hand: ByHand | None) -> Proposal:
     snapshot, budget = probe.snapshot, probe.budget
     parameter = probe.dictionary.get(one.parameter)
-    proposed = parse_limit(limit_text_of(one), parameter=parameter)
-    given = proposed if hand is None else parse_limit(hand.limit, parameter=parameter, unit_hint=one.unit)
     known = _known_child(snapshot, budget, one, parents)
+    kept = known.limit if one.is_kept and known is not None else None
+    proposed = kept or parse_limit(limit_text_of(one), parameter=parameter)
+    given = proposed if hand is None else parse_limit(hand.limit, parameter=parameter, unit_hint=one.unit)
     difference = limit_difference(proposed, given) if hand is not None else ""
     reason = hand.reason if hand is not None and difference else ""
     child = known or _new_child(one, parents, probe, parameter.title if parameter else one.parameter)
@@ -351,7 +389,7 @@ def _link(
         None,
     )
     fresh = stored or Allocation(id=f"{parent.id} > {one.child.id}", parent=parent.id, child=one.child.id)
-    text = limit_text_of(one.allotment)
+    text = "" if one.allotment.is_kept else limit_text_of(one.allotment)
     fields = {
         "parent_revision": parent.revision,
         "budget": budget.id,

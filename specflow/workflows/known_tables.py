@@ -103,7 +103,8 @@ def _misses(found: KnownBudget) -> ReportTable:
     rows = []
     for one in found.reallocation.misses:
         costs = ", ".join(
-            f"{cost.requirement} {cost.before:+.3g} → {cost.after:+.3g} {cost.unit}" for cost in one.costs
+            f"{cost.requirement} {cost.before - cost.after:.2g} {cost.unit} ({cost.before:+.3g} → {cost.after:+.3g})"
+            for cost in one.costs
         )
         rows.append(
             plain_row(
