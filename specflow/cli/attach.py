@@ -106,13 +106,10 @@ def _statements(state: list[str]) -> dict[str, str]:
 
 def _propose(store: ProjectStore, file: Path, options: AttachOptions, target: Path) -> int:
     from specflow.workflows.attach import preview_attach
+    from specflow.workflows.mapping_file import write_new_mapping
 
     preview = preview_attach(store, file, options)
-    if target.exists():
-        raise SpecflowError(
-            "there is a file of this name", where=str(target), hint="give the mapping another name"
-        )
-    target.write_text(preview.measurements.proposal, encoding="utf-8")
+    write_new_mapping(target, preview.measurements.proposal)
     put(str(target))
     say(f"edit it, then: specflow attach {file} --mapping {target}")
     return int(ExitCode.CLEAN)

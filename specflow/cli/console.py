@@ -3,34 +3,57 @@
 from __future__ import annotations
 
 import contextlib
-import os
 import sys
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from typing import TYPE_CHECKING, Any
 
-from specflow.errors import ExitCode, SpecflowError
+from specflow.cli.streams import drop_output, is_unicode, prepare_streams
+from specflow.errors import ExitCode, SpecflowError, StoreError
 
 if TYPE_CHECKING:
     import typer
 
-PIPED_WIDTH = 10_000  # a pipe has no width; so wide that no row of ours is folded
-
 
 def say(text: str = "") -> None:
-    """Write a line of talk to stderr."""
-    print(text, file=sys.stderr)
+    """Write a line of talk to stderr; one that nobody can be told is left unsaid."""
+    with contextlib.suppress(OSError):
+        print(text, file=sys.stderr)
 
 
-def put(text: str) -> None:
+def put(text: str = "", *, end: str = "\n") -> None:
     """Write data to stdout."""
-    print(text)
+    _deliver(lambda: print(text, end=end, flush=True))
+
+
+def put_bytes(content: bytes) -> None:
+    """Write the bytes of a file to stdout."""
+    sink = sys.stdout.buffer
+    _deliver(lambda: (sink.write(content), sink.flush()))
+
+
+def _deliver(write: Callable[[], object]) -> None:
+    """Write; when the reader has gone (a pager that was closed) the rest is dropped and the command goes on.
+
+    Ending here would leave unstored what the person has accepted, and would take the findings out of the exit code.
+    """
+    try:
+        write()
+    except BrokenPipeError:
+        drop_output()
+    except OSError as error:
+        drop_output()
+        raise StoreError(
+            f"the output cannot be written: {error.strerror or error}",
+            where="stdout",
+            hint="free some space, or send it elsewhere",
+        ) from error
 
 
 def put_json(value: Any) -> None:
     """Write JSON to stdout, keys in the order given, nothing escaped that need not be."""
     import json
 
-    print(json.dumps(value, ensure_ascii=False, indent=1))
+    put(json.dumps(value, ensure_ascii=not is_unicode(), indent=1))
 
 
 def ask(question: str) -> bool:
@@ -70,6 +93,7 @@ def progress(title: str) -> Iterator[Any]:
 
 def run(app: typer.Typer) -> int:
     """Run the application; return its exit code. No traceback ever reaches the person for an error of ours."""
+    prepare_streams()
     try:
         result = app(standalone_mode=False)
     except SpecflowError as error:
@@ -78,13 +102,24 @@ def run(app: typer.Typer) -> int:
     except KeyboardInterrupt:
         say("interrupted; nothing half-written was left behind")
         return int(ExitCode.INTERRUPTED)
-    except BrokenPipeError:
-        # The reader has gone (a pager that was closed): not our error, and Python must not complain at exit.
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
-        return int(ExitCode.CLEAN)
+    except OSError as error:
+        show_error(_refused_by_the_system(error))
+        return int(ExitCode.ENVIRONMENT)
+    except MemoryError:
+        show_error(StoreError("there is not enough memory", where="this machine", hint="split the file"))
+        return int(ExitCode.ENVIRONMENT)
     except Exception as error:  # click's own errors carry their exit code and know how to show themselves
         return _end_of_click(error)
     return int(result) if isinstance(result, int) else int(ExitCode.CLEAN)
+
+
+def _refused_by_the_system(error: OSError) -> StoreError:
+    """Return what is said of a fault that no command foresaw: a disk that fails, a name too long, no more handles."""
+    return StoreError(
+        f"the system refuses: {error.strerror or error}",
+        where=str(error.filename or "this machine"),
+        hint="check the path, the rights on it and the space left",
+    )
 
 
 def _end_of_click(error: Exception) -> int:

@@ -2,13 +2,12 @@
 
 from __future__ import annotations
 
-import sys
 from pathlib import Path
 from typing import Annotated
 
 import typer
 
-from specflow.cli.console import progress, put, put_json, say
+from specflow.cli.console import progress, put, put_bytes, put_json, say
 from specflow.cli.options import AsOfOption, JsonOption, ProjectOption, judged_on, open_store
 
 OutputOption = Annotated[
@@ -61,7 +60,7 @@ def export(
     with open_store(project, read_only=True) as store, progress("export"):
         made = export_report(store, judged_on(as_of), format_for(output, format), tables=table or ())
     if output == "-":
-        sys.stdout.buffer.write(made.content)
+        put_bytes(made.content)
         return
     path = Path(output or made.file_name)
     write_export(made, path, overwrite=overwrite)

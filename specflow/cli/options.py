@@ -77,4 +77,6 @@ def judged_on(as_of: str) -> date:
     try:
         return date.fromisoformat(as_of)
     except ValueError:
-        raise SpecflowError(f"{as_of!r} is not a date", hint="write it as YYYY-MM-DD") from None
+        raise SpecflowError(
+            f"{as_of!r} is not a date", where="--as-of", hint="write it as YYYY-MM-DD"
+        ) from None

@@ -6,6 +6,8 @@ import sys
 from typing import Any
 from unicodedata import combining, east_asian_width
 
+from specflow.cli.console import put
+from specflow.cli.streams import fitting
 from specflow.model.report import Align, CellTone, Report, ReportTable
 
 STYLES = {
@@ -22,14 +24,14 @@ def put_table(table: ReportTable) -> None:
     if sys.stdout.isatty():
         _put_on_terminal(table)
     else:
-        print("\n".join(plain_lines(table)))
+        put("\n".join(plain_lines(table)))
 
 
 def plain_lines(table: ReportTable) -> list[str]:
     """Return the lines of a table without colours, each cell as wide as its column asks; a row is never folded."""
     grid = [[column.title.split("\n") for column in table.columns]]
     for row in table.rows:
-        cells = [cell.text.split("\n") for cell in row.cells]
+        cells = [fitting(cell.text).split("\n") for cell in row.cells]
         if cells and row.depth:
             cells[0] = ["  " * row.depth + line for line in cells[0]]
         grid.append(cells)
@@ -74,26 +76,28 @@ def _put_on_terminal(table: ReportTable) -> None:
             column.title, justify="right" if column.align is Align.RIGHT else "left", overflow="fold"
         )
     for row in table.rows:
-        cells = [Text(cell.text, style=STYLES[cell.tone]) for cell in row.cells]
+        cells = [Text(fitting(cell.text), style=STYLES[cell.tone]) for cell in row.cells]
         if cells and row.depth:
             cells[0] = Text("  " * row.depth) + cells[0]
         grid.add_row(*cells)
-    if table.title:
-        console.print(Text(table.title, style="bold underline"))
-    if table.intro:
-        console.print(Padding(Text(table.intro), (0, 0, 1, 0), expand=False))
-    console.print(grid)
+    with console.capture() as captured:
+        if table.title:
+            console.print(Text(table.title, style="bold underline"))
+        if table.intro:
+            console.print(Padding(Text(table.intro), (0, 0, 1, 0), expand=False))
+        console.print(grid)
+    put(captured.get(), end="")
 
 
 def put_report(report: Report) -> None:
     """Print all tables of a report, then its facts and cautions."""
     for table in report.tables:
         put_table(table)
-        print()
+        put()
     for name, value in report.facts:
-        print(f"{name}: {value}")
+        put(f"{name}: {value}")
     for caution in report.cautions:
-        print(f"! {caution}")
+        put(f"! {caution}")
 
 
 def report_as_json(report: Report) -> dict[str, Any]:

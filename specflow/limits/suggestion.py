@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Callable
+from math import isinf
 
 from specflow.errors import ExpressionError
 from specflow.limits.conversion import conversion
@@ -53,6 +54,8 @@ def example_of(text: str, unit: str, better: Better | None) -> str:
         sign, number = match.group(1), match.group(2)
     elif found:
         sign, number = found[0].group(1), found[0].group(2)
+    if isinf(float(number.replace(",", "."))):
+        number = "45"
     value = f"{'-' if sign in ('-', '−', '–') and sign else ''}{number.replace(',', '.')}"
     return f"{_side(text, better)} {value} {'plain' if own == '1' else own}"
 

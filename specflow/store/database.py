@@ -44,8 +44,9 @@ class ProjectDatabase:
 
         try:
             url = make_url(self._address).set(drivername="postgresql+psycopg")
-            return create_engine(url, connect_args={"connect_timeout": 10})
-        except ModuleNotFoundError:
+            said = "connect_timeout" in url.query  # what is given here outdoes what the address says
+            return create_engine(url, connect_args={} if said else {"connect_timeout": 10})
+        except ImportError:  # also: psycopg is there, but the library of PostgreSQL below it is not
             raise StoreError(
                 "the driver for PostgreSQL is not installed",
                 where="project address",

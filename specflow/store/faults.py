@@ -97,7 +97,11 @@ def _fault(
     for start, message, hint in known:
         if code.startswith(start):
             return StoreError(message, where=where, hint=hint)
-    return StoreError(f"the database refuses: {_first_line(cause)}", where=where)
+    return StoreError(
+        f"the database refuses: {_first_line(cause)}",
+        where=where,
+        hint="the project is as it was before; report this message if it comes again",
+    )
 
 
 def _first_line(error: BaseException) -> str:

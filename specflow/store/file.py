@@ -34,7 +34,11 @@ def new_file(path: Path) -> Iterator[None]:
             "there is a file of this name already", where=str(path), hint="name another one"
         ) from None
     except OSError as error:
-        raise StoreError(f"cannot be created: {error.strerror}", where=str(path)) from None
+        raise StoreError(
+            f"the project cannot be created: {error.strerror}",
+            where=str(path),
+            hint="check that the folder exists and may be written",
+        ) from None
     try:
         with translated(str(path)):
             with closing(sqlite3.connect(path)) as connection:
@@ -73,10 +77,16 @@ class ProjectFile:
                 header = file.read(len(_HEADER))
         except FileNotFoundError:
             raise StoreError(
-                "there is no such project", where=self.name, hint="check the path, or create it"
+                "there is no such project",
+                where=self.name,
+                hint="check the path; specflow init NAME makes a new one",
             ) from None
         except OSError as error:
-            raise StoreError(f"cannot be opened: {error.strerror}", where=self.name) from None
+            raise StoreError(
+                f"the project cannot be opened: {error.strerror}",
+                where=self.name,
+                hint="name a *.specflow file that you may read",
+            ) from None
         if not header:
             raise StoreError(
                 "the file is empty: its creation was interrupted",

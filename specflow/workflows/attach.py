@@ -7,7 +7,7 @@ from dataclasses import dataclass, field
 from pathlib import Path
 
 from specflow.changes import diff
-from specflow.errors import DocumentError, FileError
+from specflow.errors import DocumentError
 from specflow.importers.measurements import MeasuredTable, Measurements, read_measurements
 from specflow.model.base import Document, code_key
 from specflow.model.change import Change
@@ -23,6 +23,8 @@ from specflow.model.snapshot import Snapshot
 from specflow.store import ProjectStore
 from specflow.workflows.earlier_tables import Replacement, replaced_rows
 from specflow.workflows.evaluate_project import project_dictionary
+from specflow.workflows.mapping_file import read_mapping_file
+from specflow.workflows.subjects import not_found
 
 
 @dataclass(frozen=True)
@@ -147,20 +149,6 @@ def preview_attach(
     )
 
 
-def read_mapping_file(path: Path | None) -> str:
-    """Return the text of a mapping file, "" without one."""
-    if path is None:
-        return ""
-    try:
-        return path.read_text(encoding="utf-8-sig")
-    except (OSError, UnicodeDecodeError) as error:
-        raise FileError(
-            f"the mapping cannot be read: {getattr(error, 'strerror', None) or error}",
-            where=str(path),
-            hint="check the path; a mapping is a UTF-8 text file (--propose-mapping writes one)",
-        ) from None
-
-
 def accept_attach(store: ProjectStore, preview: AttachPreview, decision: Decision) -> Attached:
     """Store the tables of a preview in one transaction.
 
@@ -208,9 +196,12 @@ def _refuse_unsettled(preview: AttachPreview, decision: Decision) -> None:
             hint=first.remedy,
         )
     if preview.rejected_cells and not decision.take_rest:
+        counted = _counted(preview.rejected_cells, "cell or row is", "cells or rows are")
+        place, reason = _first_rejected(preview)
         raise DocumentError(
-            f"{_counted(preview.rejected_cells, 'cell or row is', 'cells or rows are')} rejected; nothing was stored",
-            where=where,
+            f"{counted} rejected; nothing was stored. "
+            f"{'It' if preview.rejected_cells == 1 else 'The first'}: {reason}",
+            where=", ".join(filter(None, [where, *place])),
             hint="mend them in the file, or say --take-rest to store the rest; what is left out stays a finding",
         )
     faults = [one for one in preview.measurements.findings if one.severity is Severity.ERROR]
@@ -224,6 +215,14 @@ def _refuse_unsettled(preview: AttachPreview, decision: Decision) -> None:
     if empty and not preview.new_tables and not preview.known:
         raise DocumentError("no row of the table is left to store", where=f"{where}, {empty[0].place}",
                             hint="see the rejected rows")  # fmt: skip
+
+
+def _first_rejected(preview: AttachPreview) -> tuple[tuple[str, ...], str]:
+    """Return sheet and cell of what is rejected first, and why."""
+    for place, table in enumerate(preview.measurements.tables):
+        if place not in preview.known and table.rejected:
+            return (table.sheet, table.rejected[0].cell), table.rejected[0].reason
+    return (), "see the preview"
 
 
 def _counted(count: int, one: str, many: str) -> str:
@@ -247,6 +246,11 @@ def _refuse_unsaid(preview: AttachPreview, decision: Decision) -> Mapping[int, S
                     hint=f"--supersedes {one.earlier} replaces them, --beside lets both stand",
                 )
     for name in decision.supersedes:
+        if preview.snapshot.find(EvidenceTable, name) is None:
+            known = [table.id for table in preview.snapshot.tables]
+            raise not_found(
+                "evidence table", name, known, listing="specflow export --table evidence lists them"
+            )
         if code_key(name) not in seen:
             raise DocumentError(
                 f"no row of {preview.path.name} has the identity of a row of {name}",

@@ -17,6 +17,7 @@ def project_history(store: ProjectStore, code: str = "", *, last: int | None = N
     entries = store.history(id=code or None)
     if code and not entries:
         known = list(dict.fromkeys(entry.change.id for entry in store.history()))
-        raise not_found("document", code, [one for one in known if code_key(one) != code_key(code)])
+        others = [one for one in known if code_key(one) != code_key(code)]
+        raise not_found("document", code, others, listing="specflow history lists everything that was stored")
     kept = entries if last is None else entries[-last:] if last > 0 else []
     return history_table(f"History of {code or 'the project'}", kept)

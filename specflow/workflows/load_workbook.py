@@ -62,11 +62,12 @@ def accept_load(store: ProjectStore, preview: LoadPreview, *, by: str, take_rest
 
 def refuse_rejected(preview: LoadPreview, *, take_rest: bool) -> None:
     """Raise DocumentError when something was rejected, unless the person has said to take the rest."""
-    rejected = len(preview.rejected)
-    if rejected and not take_rest:
+    rejected, first = len(preview.rejected), next(iter(preview.rejected), None)
+    if first is not None and not take_rest:
         raise DocumentError(
             f"{rejected} row{'s' * (rejected != 1)} or cell{'s' * (rejected != 1)} "
-            f"{'were' if rejected != 1 else 'was'} rejected; nothing was stored",
-            where=str(preview.path),
+            f"{'were' if rejected != 1 else 'was'} rejected; nothing was stored. "
+            f"{'It' if rejected == 1 else 'The first'}: {first.message}",
+            where=str(first.origin or preview.path),
             hint="mend them in the workbook, or say --take-rest to store what could be read",
         )

@@ -61,12 +61,14 @@ def _names(snapshot: Snapshot) -> list[str]:
     return [*(subject.id for subject in subjects), *(file.name for file in files)]
 
 
-def not_found(kind: str, code: str, known: Sequence[str]) -> DocumentError:
-    """Return the error for a name that means nothing, with what is near to it."""
+def not_found(kind: str, code: str, known: Sequence[str], *, listing: str = "") -> DocumentError:
+    """Return the error for a name that means nothing, with what is near to it, else with what lists them all."""
     by_key = {code_key(one): one for one in known}
     near = [by_key[key] for key in get_close_matches(code_key(code), by_key, n=3)]
     if near:
         hint = f"near to it: {', '.join(near)}"
+    elif listing:
+        hint = listing
     elif known:
         hint = "specflow status lists the requirements"
     else:

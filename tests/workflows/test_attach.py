@@ -176,7 +176,7 @@ def test_another_item_is_another_identity(store: ProjectStore, tmp_path: Path) -
 
 def test_superseding_what_is_not_replaced_is_refused(store: ProjectStore, tmp_path: Path) -> None:
     path = book(tmp_path / "gain.xlsx", FIRST)
-    with pytest.raises(DocumentError, match="has the identity of a row of EV-9"):
+    with pytest.raises(DocumentError, match="no evidence table 'EV-9'"):
         attached(store, path, Decision("A. B.", supersedes=["EV-9"]))
     with pytest.raises(DocumentError, match="nothing is superseded"):
         attached(store, path, Decision("A. B.", resolves="NCR-1"))
