@@ -8,11 +8,13 @@ from __future__ import annotations
 from collections import defaultdict
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
+from typing import Any
 
 from specflow.errors import DocumentError, StoreError
 from specflow.exchange import read_text
 from specflow.model.base import Document, code_key
 from specflow.model.evidence import EvidenceColumns
+from specflow.model.garbage import uncollected
 from specflow.model.nouns import NOUNS
 from specflow.model.snapshot import Snapshot
 from specflow.store.columns import PackedColumn, unpack
@@ -44,12 +46,17 @@ def read_revision(run: Run) -> int:
 
 def load_snapshot(place: Place) -> Snapshot:
     """Return all documents at one revision; the arrays of evidence are read when the snapshot is asked for them."""
+    with translated(place.name), place.reading() as run:
+        rows = list(run(_DOCUMENTS))
+    with uncollected():
+        return _snapshot(place, rows)
+
+
+def _snapshot(place: Place, rows: Iterable[Sequence[Any]]) -> Snapshot:
     documents: dict[str, dict[str, Document]] = {noun.name: {} for noun in NOUNS}
     removed: dict[str, set[str]] = defaultdict(set)
     tables: dict[str, int] = {}
     revision = 0
-    with translated(place.name), place.reading() as run:
-        rows = list(run(_DOCUMENTS))
     for noun, pk, key, body in rows:
         if not noun:
             revision = pk

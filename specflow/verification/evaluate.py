@@ -7,6 +7,7 @@ from dataclasses import replace
 from datetime import date
 
 from specflow.model.base import code_key
+from specflow.model.garbage import uncollected
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Results, Snapshot
 from specflow.model.verdict import RequirementStatus
@@ -25,6 +26,13 @@ def evaluate(
 
     Never raises for what evidence or documents contain: what cannot be judged is said in the status.
     """
+    with uncollected():
+        return _evaluated(snapshot, dictionary, as_of, only)
+
+
+def _evaluated(
+    snapshot: Snapshot, dictionary: Dictionary, as_of: date, only: Iterable[str] | None
+) -> Results:
     workspace = Workspace(snapshot, dictionary, as_of)
     decisions = Decisions.of(snapshot, as_of)
     asked = None if only is None else {code_key(one) for one in only}
