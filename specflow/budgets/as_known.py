@@ -34,9 +34,9 @@ class KnownServed:
     """One requirement with what is known.
 
     ``served`` is held at the values known; ``spread`` (n,) is the standard uncertainty of the result in the unit of
-    the margin, of ``freedom`` (n,) effective degrees; ``predicted`` (n,) the margin kept with ``confidence``, one-sided;
-    ``probability`` (n,) that the limit and the reserve are kept at that place. Never multiply these over places: one
-    system meets all places or does not.
+    the margin, of ``freedom`` (n,) effective degrees; ``predicted`` (n,) the margin kept with ``confidence``,
+    one-sided; ``probability`` (n,) that the limit and the reserve are kept at that place. Never multiply these over
+    places: one system meets all places or does not.
     """
 
     served: Served

@@ -56,8 +56,12 @@ def test_json_and_recording(command: Command, project: Path) -> None:
 
 @pytest.mark.parametrize(
     ("words", "message"),
-    [(("XX",), "there is no budget"), (("RX", "--serial", "Q"), "there is no item"), (("RX", "--confidence", "2"), "no confidence")],
-)  # fmt: skip
+    [
+        (("XX",), "there is no budget"),
+        (("RX", "--serial", "Q"), "there is no item"),
+        (("RX", "--confidence", "2"), "no confidence"),
+    ],
+)
 def test_bad_input_is_one_message(
     command: Command, project: Path, words: tuple[str, ...], message: str
 ) -> None:

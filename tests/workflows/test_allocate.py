@@ -21,7 +21,7 @@ from specflow.workflows.evaluate_project import evaluate_project
 from specflow.workflows.solve_budget import solve_budget
 from specflow.workflows.try_change import keep_trial, try_changes
 from tests.budgets import receiver
-from tests.builders import editing
+from tests.builders import a_requirement, between, editing
 
 AS_OF = date(2026, 6, 1)
 
@@ -123,6 +123,32 @@ def test_solving_a_line_for_both_limits(tmp_path: Path) -> None:
     assert solved.solution.at_least.requirement == "SYS-NF"
     assert solved.solution.at_most.requirement == "SYS-IP"
     assert len(solved.table.rows) == 3
+
+
+def test_a_requirement_that_stands_is_kept_as_what_its_block_takes_first(tmp_path: Path) -> None:
+    standing = a_requirement(
+        "LNA-G", block="LNA", parents=("SYS-NF",), limit=between(16, 20), conditions="HOT-COLD"
+    )
+    with receiver.make_store(tmp_path / "rx.specflow", standing) as store:
+        preview = preview_allocation(store, "RX", AllocateOptions("equal"))
+    one = next(one for one in preview.proposals if one.child.id == "LNA-G")
+    assert one.given == standing.limit and one.allotment.words == "LNA-G as it stands"
+    edited = [
+        change.id for change in preview.changes if change.action == "edit" and "limit" in str(change.fields)
+    ]
+    assert edited == []
+    assert preview.closure.closes is True
+    assert any("LNA gain 16 dB" in limit.stands for limit in preview.closure.limits)
+
+
+def test_a_figure_that_follows_conditions_gets_no_limit_of_one_number(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        text = "RX FIL insertion_loss = table temperature_ambient: -30 °C 0.5; 55 °C 3 dB linear"
+        keep_trial(store, try_changes(store, [text], AS_OF), by="A. Invented", reason="measured")
+        preview = preview_allocation(store, "RX", AllocateOptions("equal"))
+    assert "FIL-INSERTION-LOSS" not in {one.child.id for one in preview.proposals}
+    assert any("differs more between conditions than its tolerance" in note for note in preview.notes)
+    assert preview.closure.closes is True
 
 
 def test_a_changed_line_limit_or_child_marks_what_no_longer_follows(tmp_path: Path) -> None:
