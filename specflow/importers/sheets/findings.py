@@ -17,6 +17,7 @@ WORKBOOK_FINDINGS: dict[str, str] = {
     "workbook-merged-cells": "Merged cells do not say which rows and columns their value belongs to.",
     "workbook-missing-column": "A sheet lacks a header without which it cannot be read.",
     "workbook-no-bandwidth": "A density, noise or emission limit has no reference bandwidth.",
+    "workbook-unit-conflict": "A limit has a unit of its own, and the unit column says another.",
     "workbook-no-unit": "A limit has no unit; the parameter's own is not taken by guess.",
     "workbook-nothing-to-load": "The workbook holds no row to load.",
     "workbook-plans-differ": "The methods in a requirement's row and on the sheet Activities differ.",

@@ -13,7 +13,7 @@ from specflow.model.declared import DeclaredValue
 from specflow.model.limit import Limit, Population
 from specflow.model.parameter import Better, Parameter
 from specflow.parameters import suits
-from specflow.units import ONE, parse_unit
+from specflow.units import ONE, Unit, parse_unit
 
 _NO_NUMBERS = frozenset({"nan", "inf", "infinity"})
 
@@ -28,7 +28,8 @@ def limit_cell(
     is refused, unless the parameter is a plain number.
     """
     text = text or row.needed(column)
-    if hint and row.attempt("unit", lambda: parse_unit(hint)) is None:
+    named = row.attempt("unit", lambda: parse_unit(hint)) if hint else None
+    if hint and named is None:
         return None
     hint = hint or row.units.get(column, "")
     if parameter is None:
@@ -47,6 +48,8 @@ def limit_cell(
     if not hint and _lacks_unit(row, column, text, limit, parameter, intake):
         return None
     _check_kind(row, column, limit, parameter)
+    if named is not None:
+        _check_unit_column(row, column, limit, named)
     return limit
 
 
@@ -94,6 +97,17 @@ def _lacks_unit(
         )
         return True
     return False
+
+
+def _check_unit_column(row: SheetRow, column: str, limit: Limit, named: Unit) -> None:
+    """Refuse a limit that brings another unit than the unit column says: one of the two is a slip, nobody knows which."""
+    if limit.unit and parse_unit(limit.unit) != named:
+        row.fault(
+            "unit",
+            f"the unit column says {row.text('unit')}, but the limit {row.text(column)!r} is in {limit.unit}",
+            "write the unit once, in the limit or in this column, or the same in both",
+            rule="workbook-unit-conflict",
+        )
 
 
 def _check_kind(row: SheetRow, column: str, limit: Limit, parameter: Parameter) -> None:

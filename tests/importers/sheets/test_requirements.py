@@ -36,6 +36,29 @@ def requirement(tmp_path: Path, **cells: Any) -> Requirement:
 
 
 @pytest.mark.parametrize(
+    ("cells", "says", "where"),
+    [
+        ({"Limit": "< -40 dBm", "Unit": "dBW"}, "'< -40 dBm' is in dBm", "E2"),
+        ({"Limit": "-10 dBW max", "Unit": "dBm"}, "'-10 dBW max' is in dBW", "E2"),
+        ({"Limit": None, "Max": "24 dBm", "Unit": "dBW"}, "'24 dBm' is in dBm", "F2"),
+    ],
+)
+def test_a_limit_in_another_unit_than_the_unit_column_says_is_refused(
+    tmp_path: Path, cells: dict[str, Any], says: str, where: str
+) -> None:
+    (finding,) = load(tmp_path, **cells).findings
+    assert finding.rule == "workbook-unit-conflict"
+    assert finding.message == f"the unit column says {cells['Unit']}, but the limit {says}"
+    assert finding.origin is not None and finding.origin.cell == where
+
+
+def test_a_unit_that_is_written_twice_the_same_is_no_conflict(tmp_path: Path) -> None:
+    assert requirement(tmp_path, Limit=">= 45 dBm", Unit="dBm").limit.unit == "dBm"
+    assert requirement(tmp_path, Limit="20 dBm +2/-3 dB", Unit=" dBm ").limit.unit == "dBm"
+    assert requirement(tmp_path, Parameter="evm", Limit="8 %", Unit="percent").limit.unit == "%"
+
+
+@pytest.mark.parametrize(
     ("parameter", "text", "words"),
     [
         ("eirp", ">= 45 dBm", "EIRP: at least 45 dBm"),
