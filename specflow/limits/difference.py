@@ -4,7 +4,9 @@ from __future__ import annotations
 
 from decimal import Decimal
 
-from specflow.limits.conversion import difference_unit, same_unit_spelling
+import numpy as np
+
+from specflow.limits.conversion import PLAIN, conversion, difference_unit, same_unit_spelling, unit_of
 from specflow.limits.expression_shape import plain_number
 from specflow.limits.expression_text import expression_text, expression_words
 from specflow.limits.text import limit_text, node_text, statistic_text
@@ -27,6 +29,9 @@ from specflow.model.limit import (
     Tolerance,
     Undefined,
 )
+
+_SAME = ", the same in meaning"
+_THEN = ": "
 
 
 def limit_difference(before: Limit, after: Limit) -> str:
@@ -58,10 +63,12 @@ def node_differences(before: LimitNode, after: LimitNode) -> list[str]:
         case Bound(), Bound():
             return _bounds(before, after)
         case Between(), Between():
-            return _units(before.unit, after.unit) or [
+            return _ranges_in_other_units(before, after) or [
                 *_named("lower limit", _moved(before.lower, after.lower, before.unit, Side.LOWER)),
                 *_named("upper limit", _moved(before.upper, after.upper, before.unit, Side.UPPER)),
             ]
+        case (Between(), Bound()) | (Bound(), Between()):
+            return _ends(before, after) or [f"changed from {node_words(before)} to {node_words(after)}"]
         case Tolerance(), Tolerance():
             return _tolerances(before, after)
         case Mask(), Mask():
@@ -100,13 +107,79 @@ def _units(before: str, after: str) -> list[str]:
 def _bounds(before: Bound, after: Bound) -> list[str]:
     if before.side is not after.side:
         return [f"changed from {node_words(before)} to {node_words(after)}"]
-    changes = _units(before.unit, after.unit)
-    if changes:
-        return [f"{changes[0]} ({node_text(before)} -> {node_text(after)})"]
+    units = _units(before.unit, after.unit)
+    if units:
+        moved = _moved_across(before.value, after.value, (before.unit, after.unit), before.side)
+        if before.strict is not after.strict and moved == _SAME:
+            moved = f", {_strictness(after)}"
+        return [f"{units[0]}{moved} ({node_text(before)} -> {node_text(after)})"]
     changes = _moved(before.value, after.value, before.unit, before.side)
     if before.strict is not after.strict:
-        changes.append(f"strictness changed: equality {'no longer ' if after.strict else ''}meets it")
+        changes.append(_strictness(after))
     return changes
+
+
+def _strictness(after: Bound) -> str:
+    return f"strictness changed: equality {'no longer ' if after.strict else ''}meets it"
+
+
+def _ranges_in_other_units(before: Between, after: Between) -> list[str]:
+    """Tell a range that is now in another unit; nothing when the unit stayed."""
+    units = (before.unit, after.unit)
+    if not _units(*units):
+        return []
+    lower = _moved_across(before.lower, after.lower, units, Side.LOWER)
+    upper = _moved_across(before.upper, after.upper, units, Side.UPPER)
+    told = lower if lower == upper == _SAME else "".join(_of_ends(lower, upper))
+    return [f"{_units(*units)[0]}{told} ({node_text(before)} -> {node_text(after)})"]
+
+
+def _of_ends(lower: str, upper: str) -> list[str]:
+    return [
+        f"{mark}{end} limit {moved.removeprefix(_THEN).removeprefix(', ')}"
+        for mark, end, moved in ((_THEN, "lower", lower), (", ", "upper", upper))
+        if moved
+    ]
+
+
+def _ends(before: LimitNode, after: LimitNode) -> list[str]:
+    """Tell which end of a range went or came, and how the other moved; nothing where the units differ."""
+    went = isinstance(before, Between)
+    between, bound = (before, after) if went else (after, before)
+    if not isinstance(between, Between) or not isinstance(bound, Bound) or _units(between.unit, bound.unit):
+        return []
+    lower_stays = bound.side is Side.LOWER
+    other = between.upper if lower_stays else between.lower
+    name, stays = ("upper limit", "lower limit") if lower_stays else ("lower limit", "upper limit")
+    own = between.lower if lower_stays else between.upper
+    old, new = (own, bound.value) if went else (bound.value, own)
+    changes = [f"{name} {expression_words(other, between.unit)} {'removed' if went else 'added'}"]
+    changes += _named(stays, _moved(old, new, between.unit, bound.side))
+    if bound.strict:
+        changes.append(
+            f"strictness changed: equality with the {stays} {'no longer ' if went else ''}meets it"
+        )
+    return changes
+
+
+def _moved_across(before: Expression, after: Expression, units: tuple[str, str], side: Side) -> str:
+    """Tell by how much a value moved that is now in another unit; "" where the two cannot be compared.
+
+    A density in another reference bandwidth is not compared: what a signal between the two holds is not known.
+    """
+    old, new, (source, target) = plain_number(before), plain_number(after), units
+    convert = None if old is None or new is None else conversion(source, target)
+    if convert is None or old is None or new is None or _bandwidth(source) != _bandwidth(target):
+        return ""
+    amount = new - float(convert(np.asarray([old]))[0])
+    if abs(amount) <= 1e-9 * max(abs(new), 1.0 if difference_unit(target) != target else 0.0):
+        return _SAME
+    word = "tightened" if (amount > 0) == (side is Side.LOWER) else "relaxed"
+    return f"{_THEN}{word} by {abs(amount):.6g} {'' if target in PLAIN else difference_unit(target)}".rstrip()
+
+
+def _bandwidth(unit: str) -> float | None:
+    return None if unit in PLAIN else unit_of(unit).bandwidth_hz
 
 
 def _moved(before: Expression, after: Expression, unit: str, side: Side) -> list[str]:

@@ -17,7 +17,66 @@ from specflow.limits import limit_difference, parse_limit
         ("<= 80 °C", "<= 70 °C", "tightened by 10 K (80 -> 70 °C)"),
         (">= 45 dBm", "45 dBm min", ""),
         ("<= 4 dB", "<= 4.0 dB", "written with other digits (4 -> 4.0 dB)"),
-        (">= 45 dBm", ">= 45 dBW", "unit changed from dBm to dBW (>= 45 dBm -> >= 45 dBW)"),
+        (
+            ">= 45 dBm",
+            ">= 45 dBW",
+            "unit changed from dBm to dBW: tightened by 30 dB (>= 45 dBm -> >= 45 dBW)",
+        ),
+        (
+            "-10 dBW max",
+            "20 dBm max",
+            "unit changed from dBW to dBm, the same in meaning (<= -10 dBW -> <= 20 dBm)",
+        ),
+        (
+            "<= 20 dBm",
+            "< -10 dBW",
+            "unit changed from dBm to dBW, strictness changed: equality no longer meets it (<= 20 dBm -> < -10 dBW)",
+        ),
+        (
+            "<= 0.5 V/m",
+            "<= 0.5 mV/m",
+            "unit changed from V/m to mV/m: tightened by 499.5 mV/m (<= 0.5 V/m -> <= 0.5 mV/m)",
+        ),
+        (
+            "<= 500 mV/m",
+            "<= 0.5 V/m",
+            "unit changed from mV/m to V/m, the same in meaning (<= 500 mV/m -> <= 0.5 V/m)",
+        ),
+        (
+            ">= 43 dBi",
+            ">= 43 dBd",  # IEEE Std 145: a half-wave dipole has 2.15 dBi
+            "unit changed from dBi to dBd: tightened by 2.15 dB (>= 43 dBi -> >= 43 dBd)",
+        ),
+        (
+            "21..24 dBm",
+            "21..24 dBW",
+            "unit changed from dBm to dBW: lower limit tightened by 30 dB, upper limit relaxed by 30 dB "
+            "(21 dBm..24 dBm -> 21 dBW..24 dBW)",
+        ),
+        (
+            "21..24 dBm",
+            "-9..-5 dBW",
+            "unit changed from dBm to dBW: lower limit the same in meaning, upper limit relaxed by 1 dB "
+            "(21 dBm..24 dBm -> -9 dBW..-5 dBW)",
+        ),
+        (
+            "20..30 dBm",
+            "-10..0 dBW",
+            "unit changed from dBm to dBW, the same in meaning (20 dBm..30 dBm -> -10 dBW..0 dBW)",
+        ),
+        (
+            "-50 dBW/4 kHz max",
+            "-50 dBW/MHz max",
+            "unit changed from dBW/4 kHz to dBW/MHz (<= -50 dBW/4 kHz -> <= -50 dBW/MHz)",
+        ),
+        ("21..24 dBm", ">= 21 dBm", "upper limit 24 dBm removed"),
+        (
+            "21..24 dBm",
+            "< 23 dBm",
+            "lower limit 21 dBm removed; upper limit tightened by 1 dB (24 -> 23 dBm); "
+            "strictness changed: equality with the upper limit no longer meets it",
+        ),
+        (">= 21 dBm", "20..24 dBm", "upper limit 24 dBm added; lower limit relaxed by 1 dB (21 -> 20 dBm)"),
         (">= 45 dBm", "> 45 dBm", "strictness changed: equality no longer meets it"),
         (">= 45 dBm", "<= 45 dBm", "changed from at least 45 dBm to at most 45 dBm"),
         (

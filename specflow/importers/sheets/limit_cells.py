@@ -100,7 +100,7 @@ def _lacks_unit(
 
 
 def _check_unit_column(row: SheetRow, column: str, limit: Limit, named: Unit) -> None:
-    """Refuse a limit that brings another unit than the unit column says: one of the two is a slip, nobody knows which."""
+    """Refuse a limit that brings another unit than the unit column says: either may be the slip."""
     if limit.unit and parse_unit(limit.unit) != named:
         row.fault(
             "unit",
