@@ -51,8 +51,8 @@ def _version_option(
 
 def main() -> None:
     """Run the command line and end the process with its exit code."""
-    # A command lives for a moment and drops little. Looking for garbage while modules load, and through everything again
-    # at the end, is a tenth of its time. Nor does it want the plug-ins that other packages offer to pydantic.
+    # A command lives for a moment and drops little: looking for garbage while modules load, and through everything at
+    # the end, is a tenth of its time. Nor does it want the plug-ins that other packages offer to pydantic.
     gc.set_threshold(50_000, 20, 100)
     os.environ.setdefault("PYDANTIC_DISABLE_PLUGINS", "__all__")
     code = run(build())

@@ -2,9 +2,9 @@
 
 from __future__ import annotations
 
+from bisect import insort
 from collections import defaultdict
-from collections.abc import Hashable, Iterator
-from itertools import combinations
+from collections.abc import Hashable, Iterator, Sequence
 
 from specflow.errors import ExpressionError, UnitError
 from specflow.limits import LimitContext, evaluate_limit, limit_inputs
@@ -12,14 +12,12 @@ from specflow.limits.tree import side_of
 from specflow.model.base import code_key
 from specflow.model.columns import Columns
 from specflow.model.conditions import ConditionsSet
-from specflow.model.limit import Between, Bound, Limit, LimitState, Tolerance
+from specflow.model.limit import Between, Bound, Limit, LimitState, Side, Tolerance
 from specflow.model.requirement import Requirement
 from specflow.rules.base import Found
 from specflow.rules.facts import Facts, is_undefined
 from specflow.rules.words import counted
 from specflow.units import converter, parse_unit
-
-Pair = tuple[Requirement, Requirement]
 
 
 def tbd_left(facts: Facts) -> Iterator[Found]:
@@ -110,10 +108,15 @@ def duplicate_limit(facts: Facts) -> Iterator[Found]:
     Passes: they differ in block, plane, statistic, bandwidth, conditions or limit, or one is the parent of the other.
     Do: keep one of them and let its parents be those of both.
     """
-    for first, second in _alike(facts):
-        if _same_limit(first.limit, second.limit):
-            message = f"states the same as {first.id}: {second.limit.text}, same quantity and conditions"
-            yield Found(second.id, message, origin=second.origin, related=(first.id,))
+    for group in _alike(facts):
+        same: dict[Hashable, list[Requirement]] = defaultdict(list)
+        for second in group:
+            earlier = same[_said(second.limit)]
+            first = next((one for one in earlier if not _related(one, second)), None)
+            if first is not None:
+                message = f"states the same as {first.id}: {second.limit.text}, same quantity and conditions"
+                yield Found(second.id, message, origin=second.origin, related=(first.id,))
+            earlier.append(second)
 
 
 def contradicting_limits(facts: Facts) -> Iterator[Found]:
@@ -124,22 +127,82 @@ def contradicting_limits(facts: Facts) -> Iterator[Found]:
     Passes: one is a lower and the other an upper limit with room between, or one is the parent of the other.
     Do: find out which one holds and strike the other, or state in what their quantities or conditions differ.
     """
-    for first, second in _alike(facts):
-        what = "" if _same_limit(first.limit, second.limit) else _contradiction(first.limit, second.limit)
-        if what:
-            message = f"{second.limit.text} here, {first.limit.text} in {first.id}: {what}"
-            yield Found(second.id, message, origin=second.origin, related=(first.id,))
+    for group in _alike(facts):
+        unit = group[0].limit.unit
+        plain = _PlainLimits()
+        for second in group:
+            ends = _ends(second.limit, unit)
+            if ends is None:
+                continue
+            first, what = plain.against(second, ends)
+            if first is not None:
+                message = f"{second.limit.text} here, {first.limit.text} in {first.id}: {what}"
+                yield Found(second.id, message, origin=second.origin, related=(first.id,))
+            plain.add(second, ends)
 
 
-def _alike(facts: Facts) -> Iterator[Pair]:
-    """Yield pairs of requirements of one block, quantity and conditions, neither of which is the other's parent."""
+def _alike(facts: Facts) -> Iterator[Sequence[Requirement]]:
+    """Yield the requirements of one block, quantity and conditions, where there are several."""
     groups: dict[Hashable, list[Requirement]] = defaultdict(list)
     for requirement, _ in facts.defined:
         groups[_scope(requirement, facts)].append(requirement)
-    for group in groups.values():
-        for first, second in combinations(group, 2):
-            if not (_is_parent(first, second) or _is_parent(second, first)):
-                yield first, second
+    yield from (group for group in groups.values() if len(group) > 1)
+
+
+class _PlainLimits:
+    """Limits of one or two numbers on one quantity, kept so that one more need not be compared with every other.
+
+    A mask beside a flat limit, or a percentile beside a mean, are no contradiction: both may be meant to hold.
+    """
+
+    def __init__(self) -> None:
+        self._by_side: dict[Side | None, dict[Hashable, list[Requirement]]] = defaultdict(dict)
+        self._lower: list[tuple[float, int, Requirement]] = []  # by their negative: the tightest first
+        self._upper: list[tuple[float, int, Requirement]] = []
+        self._size = 0
+
+    def against(self, second: Requirement, ends: tuple[float, float]) -> tuple[Requirement | None, str]:
+        """Return an earlier requirement that contradicts this one, and how; None where none does."""
+        first = self._without_room(second, ends)
+        if first is not None:
+            return first, "no value meets both"
+        side = side_of(second.limit.tree)
+        said = "two limits for both sides" if side is None else f"two {side.value} limits"
+        own = _said(second.limit)
+        others = (one for key, known in self._by_side[side].items() if key != own for one in known)
+        return next((one for one in others if not _related(one, second)), None), said
+
+    def _without_room(self, second: Requirement, ends: tuple[float, float]) -> Requirement | None:
+        lower, upper = ends
+        own = _said(second.limit)
+        for tightest, beyond in ((self._lower, -upper), (self._upper, lower)):
+            for end, _, one in tightest:
+                if end >= beyond:
+                    break
+                if not _related(one, second) and _said(one.limit) != own:
+                    return one
+        return None
+
+    def add(self, requirement: Requirement, ends: tuple[float, float]) -> None:
+        """Keep one more; ``ends`` are its bounds in the unit of all."""
+        self._size += 1
+        insort(self._lower, (-ends[0], self._size, requirement), key=_place)
+        insort(self._upper, (ends[1], self._size, requirement), key=_place)
+        side = self._by_side[side_of(requirement.limit.tree)]
+        side.setdefault(_said(requirement.limit), []).append(requirement)
+
+
+def _place(kept: tuple[float, int, Requirement]) -> tuple[float, int]:
+    return kept[:2]
+
+
+def _said(limit: Limit) -> Hashable:
+    """Return what a limit says, however it is written."""
+    return limit.tree, limit.test_tolerance
+
+
+def _related(first: Requirement, second: Requirement) -> bool:
+    return _is_parent(first, second) or _is_parent(second, first)
 
 
 def _is_parent(parent: Requirement, child: Requirement) -> bool:
@@ -168,28 +231,6 @@ def _conditions(conditions: ConditionsSet | None) -> Hashable:
     dimensions = [one.model_copy(update={"text": ""}) for one in conditions.dimensions]
     exclusions = [one.model_copy(update={"text": "", "reason": ""}) for one in conditions.exclusions]
     return frozenset(dimensions), conditions.combination, conditions.listed, frozenset(exclusions)
-
-
-def _same_limit(first: Limit, second: Limit) -> bool:
-    return first.tree == second.tree and first.test_tolerance == second.test_tolerance
-
-
-def _contradiction(first: Limit, second: Limit) -> str:
-    """Say what contradicts between plain limits; "" where nothing does, or where a limit is more than two numbers.
-
-    A mask beside a flat limit, or a percentile beside a mean, are no contradiction: both may be meant to hold.
-    """
-    ends = [_ends(limit, second.unit) for limit in (first, second)]
-    if any(one is None for one in ends):
-        return ""
-    lower = max(one[0] for one in ends if one is not None)
-    upper = min(one[1] for one in ends if one is not None)
-    if lower > upper:
-        return "no value meets both"
-    sides = side_of(first.tree), side_of(second.tree)
-    if sides[0] is not sides[1]:
-        return ""
-    return "two limits for both sides" if sides[0] is None else f"two {sides[0].value} limits"
 
 
 def _ends(limit: Limit, unit: str) -> tuple[float, float] | None:

@@ -68,7 +68,7 @@ def evidence(seed: int) -> EvidenceColumns:
     values = {}
     for place in range(PER_TABLE):
         u = drawn.uniform(0.05, 0.2, rows)
-        low = 22 + 0.3 * u * drawn.standard_normal(rows)  # repeats scatter less than U, most of which is systematic
+        low = 22 + 0.3 * u * drawn.standard_normal(rows)  # repeats scatter less than U
         values[f"Gain {place}"] = ValueArrays(low, low, u)
     items = TextColumn(np.zeros(rows, np.int32), ("LNA-1",))
     return EvidenceColumns(conditions, values, np.arange(2, rows + 2, dtype=np.int32), items)
