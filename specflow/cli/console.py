@@ -102,6 +102,12 @@ def run(app: typer.Typer) -> int:
     except KeyboardInterrupt:
         say("interrupted; nothing half-written was left behind")
         return int(ExitCode.INTERRUPTED)
+    except SystemExit as error:
+        if isinstance(
+            error.__context__, BrokenPipeError
+        ):  # how click ends when the reader of its help has gone
+            return int(ExitCode.CLEAN)
+        raise
     except OSError as error:
         show_error(_refused_by_the_system(error))
         return int(ExitCode.ENVIRONMENT)
@@ -131,7 +137,8 @@ def _end_of_click(error: Exception) -> int:
             return int(ExitCode.INTERRUPTED)
         raise error
     if show is not None:
-        show()
+        with contextlib.suppress(OSError):
+            show()
     return int(code)
 
 

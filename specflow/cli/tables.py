@@ -10,6 +10,7 @@ from specflow.cli.console import put
 from specflow.cli.streams import fitting
 from specflow.model.report import Align, CellTone, Report, ReportTable
 
+NARROWEST = 9  # a terminal with fewer places a column breaks every word; there each row is a block of lines
 STYLES = {
     CellTone.PLAIN: "",
     CellTone.GOOD: "green",
@@ -70,6 +71,9 @@ def _put_on_terminal(table: ReportTable) -> None:
     from rich.text import Text
 
     console = Console(highlight=False)
+    if console.width < NARROWEST * len(table.columns):
+        put("\n".join(stacked_lines(table, console.width)))
+        return
     grid = Table(box=None, pad_edge=False, header_style="bold", padding=(0, 2, 0, 0))
     for column in table.columns:
         grid.add_column(
@@ -87,6 +91,25 @@ def _put_on_terminal(table: ReportTable) -> None:
             console.print(Padding(Text(table.intro), (0, 0, 1, 0), expand=False))
         console.print(grid)
     put(captured.get(), end="")
+
+
+def stacked_lines(table: ReportTable, width: int) -> list[str]:
+    """Return each row of a table as a block of lines, column by column, none wider than ``width``; blanks are left out.
+
+    Without colours: what they tell is in the words.
+    """
+    from textwrap import wrap
+
+    wide = max(width, 20)
+    lines = wrap(table.title, wide) + wrap(table.intro, wide)
+    for row in table.rows:
+        lines.append("")
+        for place, (column, cell) in enumerate(zip(table.columns, row.cells, strict=True)):
+            title, text = " ".join(column.title.split()), " ".join(fitting(cell.text).split())
+            if text:
+                before = f"  {title}: " if place else "  " * row.depth
+                lines += wrap(before + text, wide, subsequent_indent="    ")
+    return lines
 
 
 def put_report(report: Report) -> None:
