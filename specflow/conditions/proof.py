@@ -22,12 +22,11 @@ def proves(points: Points, matching: Matching, good: Good) -> Good:
 
     Call it once for each item with that item's records marked; the matching is shared.
     """
-    proved = np.zeros(points.size, np.bool_)
     chosen = good[matching.record]
     point = matching.point[chosen]
     if matching.along is None or len(point) == 0:
-        proved[point] = True
-        return proved
+        return proved_singly(point, points.size)
+    proved = np.zeros(points.size, np.bool_)
     extent = range_extent(points)
     along = matching.along[chosen]
     starts = np.flatnonzero(np.diff(point, prepend=-1))
@@ -36,6 +35,16 @@ def proves(points: Points, matching: Matching, good: Good) -> Good:
     wide = np.diff(along) > (np.inf if extent.largest_gap is None else extent.largest_gap)
     wide &= point[1:] == point[:-1]
     proved[point[1:][wide]] = False
+    return proved
+
+
+def proved_singly(places: NDArray[np.int32] | NDArray[np.intp], size: int) -> Good:
+    """Return which of ``size`` places are proved where no range is required: those at which a good record stands.
+
+    A place is a point, or the point of one of several items.
+    """
+    proved = np.zeros(size, np.bool_)
+    proved[places] = True
     return proved
 
 

@@ -14,7 +14,7 @@ from typing import Any, TypeVar
 import numpy as np
 from numpy.typing import NDArray
 
-from specflow.conditions.proof import proves
+from specflow.conditions.proof import proved_singly, proves
 from specflow.model.evidence import EvidenceTable
 from specflow.model.verdict import PointResults, Verdict
 from specflow.verification.grid import Bench, Grid, lay_out
@@ -26,6 +26,7 @@ Rows = NDArray[np.intp]
 
 _PASS, _CONDITIONAL_PASS = int(Verdict.PASS), int(Verdict.CONDITIONAL_PASS)
 _NONE, _CONDITIONAL_FAIL = int(Verdict.NONE), int(Verdict.CONDITIONAL_FAIL)
+_NOTHING = np.int8(_NONE)
 
 
 @dataclass(frozen=True, slots=True)
@@ -150,15 +151,16 @@ def _governing(grid: Grid) -> Rows:
     weight |= grid.of(readings.verdict)
     heaviest = np.zeros(grid.cells, np.int16)
     np.maximum.at(heaviest, cell, weight)
-    heavy = (weight == heaviest[cell]).nonzero()[0]
-    cell, margin = cell[heavy], grid.of(readings.guarded)[heavy]
-    margin = np.where(margin == margin, margin, np.inf)
+    heavy = (weight == heaviest.take(cell)).nonzero()[0]
+    cell, margin = cell.take(heavy), grid.of(readings.guarded).take(heavy)
+    unknown = margin != margin
+    if np.count_nonzero(unknown):
+        margin[unknown] = np.inf
     least = _filled(grid.cells, np.inf)
     np.minimum.at(least, cell, margin)
-    first = (margin == least[cell]).nonzero()[0][::-1]
-    cell, chosen = cell[first], heavy[first]
+    first = (margin == least.take(cell)).nonzero()[0][::-1]
     governing = _filled(grid.cells, -1, np.intp)
-    governing[cell] = chosen  # of equals the first stays, because it is written last
+    governing[cell.take(first)] = heavy.take(first)  # of equals the first stays, because it is written last
     return governing
 
 
@@ -173,33 +175,26 @@ def _items(grid: Grid, names: Sequence[str], governing: Rows) -> list[ItemPoints
     """Spread the governing readings over all cells, and cut the grid into items."""
     found = _Spread(grid, governing)
     verdict, counted, proved, effective = _verdicts(grid, found)
-    known = _known(grid, found)
+    known = list(_known(grid, found).items())
     rank = found(grid.bench.credit.rank, -1)
     marginal = found(grid.bench.readings.marginal, False) & counted
     stale = _stale(grid).reshape(found.shape)
-    tables = tuple(one.table for one in grid.bench.records.sources)
-    ids = tuple(table.id for table in tables)
-    return [
-        ItemPoints(
-            name,
-            PointResults(
-                item=name,
-                verdict=verdict[i],
-                proved=proved[i],
-                counted=counted[i],
-                tables=ids,
-                **{field: values[i] for field, values in known.items()},
-            ),
-            tables,
-            effective[i],
-            rank[i],
-            stale[i],
-            marginal[i],
-            grid,
-            i,
+    tables = tuple([one.table for one in grid.bench.records.sources])
+    ids = tuple([table.id for table in tables])
+    items: list[ItemPoints] = []
+    for i, name in enumerate(names):
+        results = PointResults(
+            item=name,
+            verdict=verdict[i],
+            proved=proved[i],
+            counted=counted[i],
+            tables=ids,
+            **{field: values[i] for field, values in known},
         )
-        for i, name in enumerate(names)
-    ]
+        items.append(
+            ItemPoints(name, results, tables, effective[i], rank[i], stale[i], marginal[i], grid, i)
+        )
+    return items
 
 
 class _Spread:
@@ -210,16 +205,16 @@ class _Spread:
         self.governing = governing
         self.empty = governing < 0
         self.full = not np.count_nonzero(self.empty)
-        self._pair = governing if grid.pair is None else grid.pair[governing]
-        self._record = grid.bench.readings.record[self._pair]
+        self._pair = governing if grid.pair is None else grid.pair.take(governing)
+        self._record = grid.bench.readings.record.take(self._pair)
 
     def __call__(self, values: NDArray[T], rest: float) -> NDArray[T]:
         """Return what the governing reading of each cell has, ``rest`` where there is none."""
-        return self.placed(values[self._pair], rest)
+        return self.placed(values.take(self._pair), rest)
 
     def of_record(self, values: NDArray[T], rest: float) -> NDArray[T]:
         """Return what the record of each cell has."""
-        return self.placed(values[self._record], rest)
+        return self.placed(values.take(self._record), rest)
 
     def placed(self, values: NDArray[T], rest: float) -> NDArray[T]:
         """Return values of the cells as items × points; ``values`` is changed."""
@@ -232,13 +227,13 @@ def _verdicts(grid: Grid, found: _Spread) -> tuple[Codes, Flags, Flags, Codes]:
     """Return the governing verdict of each cell, whether it weighs, whether the point is proved, what rolls up."""
     bench = grid.bench
     verdict = found(bench.readings.verdict, _NONE)
-    counted = found.placed(grid.weighing[found.governing], False)
+    counted = found.placed(grid.weighing.take(found.governing), False)
     proved = _passing(verdict, bench.conditional_pass_counts) & counted & _proved(grid)
     if bench.nothing_required is not None and not found.full:
         free = bench.nothing_required & found.empty.reshape(found.shape)
         verdict[free], counted[free], proved[free] = Verdict.NOT_TRIGGERED, True, True
-    effective = np.where(counted, verdict, np.int8(_NONE))
-    effective[_passing(effective, True) & ~proved] = _NONE
+    # A pass that does not prove its point, or a verdict that does not weigh, is nothing.
+    effective = np.where(proved | (counted & (verdict > _CONDITIONAL_PASS)), verdict, _NOTHING)
     return verdict, counted, proved, effective
 
 
@@ -278,6 +273,8 @@ def _proved(grid: Grid) -> Flags:
     bench = grid.bench
     passing = _passing(bench.readings.verdict, bench.conditional_pass_counts) & bench.credit.counts
     places = grid.of(passing).nonzero()[0]
+    if bench.matching.along is None:
+        return proved_singly(grid.cell.take(places), grid.cells).reshape(grid.items, -1)
     record, item = grid.of(bench.readings.record)[places], grid.item[places]
     proved = np.empty((grid.items, bench.points.size), bool)
     for code in range(grid.items):
