@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 import re
+from collections import Counter
 from collections.abc import Sequence
 from pathlib import Path
 
 from specflow.errors import FileError
 from specflow.importers.readers import Grid, GridFile, is_blank, open_grids
 from specflow.importers.sheets import SHEETS, Sheet
+from specflow.importers.sheets.absent import note_absent
 from specflow.importers.sheets.cycles import refuse_cycles
 from specflow.importers.sheets.header import find_header
 from specflow.importers.sheets.intake import Intake
@@ -37,7 +39,8 @@ def read_workbook(path: str | Path, snapshot: Snapshot, dictionary: Dictionary) 
     """
     file = open_grids(path)
     intake = Intake(snapshot, dictionary, folder=Path(path).parent)
-    tables = _tables(_recognised(file, intake.findings), file.fingerprint.sha256, intake.findings)
+    found = _recognised(file, intake.findings)
+    tables = _tables(found, file.fingerprint.sha256, intake.findings)
     for sheet, rows in tables:
         sheet.identify_rows(rows, intake)
     for sheet, rows in tables:
@@ -45,6 +48,7 @@ def read_workbook(path: str | Path, snapshot: Snapshot, dictionary: Dictionary) 
     refuse_cycles(intake)
     leave_out_orphans(intake)
     complete_plans(intake)
+    note_absent(intake, file.fingerprint.name, _nouns_to_miss(found, tables))
     documents = [document for noun in intake.documents.values() for document in noun.values()]
     if not documents and not any(finding.severity is Severity.ERROR for finding in intake.findings):
         intake.findings.append(_nothing_to_load(file))
@@ -128,6 +132,18 @@ def _tables(
         aside = bool(tables) and not own_name
         findings.append(finding.model_copy(update={"severity": Severity.WARNING}) if aside else finding)
     return tables
+
+
+def _nouns_to_miss(found: Sequence[Found], tables: Sequence[tuple[Sheet, list[SheetRow]]]) -> dict[str, str]:
+    """The nouns that were read, with their worksheet; not those of which a sheet could not be read."""
+    read = {sheet.layout.noun for sheet, _ in tables if not sheet.is_further}
+    refused = Counter(sheet.layout.noun for sheet, _ in found)
+    refused.subtract(sheet.layout.noun for sheet, _ in tables)
+    return {
+        sheet.layout.noun: grid.name
+        for sheet, grid in found
+        if sheet.layout.noun in read - {"project"} and not refused[sheet.layout.noun]
+    }
 
 
 def _has_content(grid: Grid) -> bool:

@@ -93,9 +93,9 @@ def test_sheets_and_rows_may_refer_to_what_comes_later(tmp_path: Path) -> None:
 def test_references_reach_into_the_project_and_take_its_spelling(tmp_path: Path) -> None:
     first = read_sheets(tmp_path, blocks=BLOCKS, requirements=[REQUIREMENT])
     project = a_snapshot(*first.documents)
-    draft = read_sheets(
-        tmp_path, project, requirements=[REQUIREMENT | {"ID": "R-2", "Parents": "r-1", "Block": "ut"}]
-    )
+    more = [REQUIREMENT | {"ID": "R-2", "Parents": "r-1", "Block": "ut"}]
+    path = project_workbook(tmp_path / "more.xlsx", requirements=more)
+    draft = read_workbook(path, project, load_dictionary())
     assert not draft.findings
     assert found(draft, Requirement)["R-2"].parents == ("R-1",)
     assert found(draft, Requirement)["R-2"].block == "UT"
@@ -275,3 +275,77 @@ def test_three_hundred_rows_load_in_moments(tmp_path: Path) -> None:
     draft = read_workbook(path, a_snapshot(), load_dictionary())
     assert time.perf_counter() - started < 3.0
     assert len(found(draft, Requirement)) == 300
+
+
+def loaded_again(tmp_path: Path, *, before: dict[str, Any], now: dict[str, Any], name: str = "") -> Draft:
+    """Load a workbook, and then another state of it (under another file name where one is given)."""
+    project = a_snapshot(*read_sheets(tmp_path, **before).documents)
+    path = project_workbook(tmp_path / (name or "project.xlsx"), **now)
+    return read_workbook(path, project, load_dictionary())
+
+
+REQUIREMENTS = [REQUIREMENT | {"ID": code} for code in ("R-1", "R-2", "R-3")]
+
+
+@pytest.mark.parametrize("name", ["project.xlsx", "project rev B.xlsx"])
+def test_a_row_that_was_deleted_is_missed_though_nothing_is_removed(tmp_path: Path, name: str) -> None:
+    draft = loaded_again(
+        tmp_path,
+        before={"blocks": BLOCKS, "requirements": REQUIREMENTS},
+        now={"blocks": BLOCKS, "requirements": REQUIREMENTS[:2]},
+        name=name,
+    )
+    (finding,) = draft.findings
+    assert (finding.rule, finding.severity, finding.subject) == (
+        "workbook-row-gone",
+        Severity.WARNING,
+        "R-3",
+    )
+    assert finding.message == (
+        "R-3 (requirement) came from this workbook and is not in it any more; it stays in the project"
+    )
+    assert finding.origin is not None and finding.origin.sheet == "Requirements"
+    assert not draft.removals
+
+
+def test_an_id_that_was_changed_leaves_the_old_one_behind_and_says_so(tmp_path: Path) -> None:
+    renamed = [REQUIREMENT | {"ID": code} for code in ("R-1", "R-2", "R-3b")]
+    draft = loaded_again(
+        tmp_path,
+        before={"blocks": BLOCKS, "requirements": REQUIREMENTS},
+        now={"blocks": BLOCKS, "requirements": renamed},
+    )
+    assert [(one.rule, one.subject) for one in draft.findings] == [("workbook-row-gone", "R-3")]
+
+
+def test_what_another_workbook_gave_is_not_missed(tmp_path: Path) -> None:
+    draft = loaded_again(
+        tmp_path,
+        before={"blocks": BLOCKS, "requirements": REQUIREMENTS},
+        now={"requirements": [REQUIREMENT | {"ID": "R-1"}, REQUIREMENT | {"ID": "R-9"}]},
+        name="changes.xlsx",
+    )
+    assert not draft.findings
+
+
+def test_ids_in_another_case_and_refused_rows_are_not_missed(tmp_path: Path) -> None:
+    now = [
+        REQUIREMENT | {"ID": "r-1"},
+        REQUIREMENT | {"ID": "R-2", "Limit": "nonsense 5"},
+        REQUIREMENT | {"ID": "R-3"},
+    ]
+    draft = loaded_again(
+        tmp_path,
+        before={"blocks": BLOCKS, "requirements": REQUIREMENTS},
+        now={"blocks": BLOCKS, "requirements": now},
+    )
+    assert [one.rule for one in draft.findings] == ["workbook-cell"]
+
+
+def test_the_rows_of_a_sheet_that_could_not_be_read_are_not_missed(tmp_path: Path) -> None:
+    draft = loaded_again(
+        tmp_path,
+        before={"blocks": BLOCKS, "requirements": REQUIREMENTS},
+        now={"blocks": BLOCKS, "requirements": [{"ID": "R-1", "Block": "UT"}]},
+    )
+    assert [one.rule for one in draft.findings] == ["workbook-missing-column"]
