@@ -4,13 +4,19 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from specflow.conditions import parse_map_entry
+import numpy as np
+
+from specflow.conditions import KNOWN_DIMENSIONS, find_dimension, map_columns, parse_map_entry
+from specflow.errors import ConditionsError
 from specflow.importers.sheets.intake import Intake
 from specflow.importers.sheets.row import SheetRow
 from specflow.importers.sheets.sheet import MARK_COLUMN, Sheet, by_code
+from specflow.importers.sheets.spelling import near
 from specflow.model.block import Block
-from specflow.model.conditions import ConditionMap
+from specflow.model.columns import Columns
+from specflow.model.conditions import ConditionMap, ConditionsSet, Dimension, MapEntry
 from specflow.model.sheet import SheetColumn, SheetLayout
+from specflow.units import compatible, parse_unit
 
 LAYOUT = SheetLayout(
     noun="condition_map",
@@ -66,7 +72,7 @@ def read(rows: Sequence[SheetRow], intake: Intake) -> None:
 
 
 def _map(rows: Sequence[SheetRow], intake: Intake) -> ConditionMap | None:
-    entries = [_entry(row) for row in rows]
+    entries = [_entry(row, intake) for row in rows]
     blocks = list(filter(None, (intake.reference(row, "block", Block) for row in rows)))
     if len(set(blocks)) > 1:
         rows[0].fault(
@@ -85,9 +91,67 @@ def _map(rows: Sequence[SheetRow], intake: Intake) -> ConditionMap | None:
     )
 
 
-def _entry(row: SheetRow) -> object:
+def _entry(row: SheetRow, intake: Intake) -> MapEntry | None:
     text = row.needed("formula")
-    return row.attempt("formula", lambda: parse_map_entry(text)) if text else None
+    entry = row.attempt("formula", lambda: parse_map_entry(text)) if text else None
+    if entry is not None:
+        units = _units(entry, intake)
+        _note_unknown(row, intake, entry, units)
+        row.attempt("formula", lambda: _check_units(entry, units))
+    return entry
+
+
+def _units(entry: MapEntry, intake: Intake) -> dict[str, str]:
+    """The units of the conditions in a formula, of those that are known to a conditions set or to the dictionary."""
+    own: dict[str, Dimension] = {
+        dimension.name: dimension for known in intake.all(ConditionsSet) for dimension in known.dimensions
+    }
+    units: dict[str, str] = {}
+    for name in _names(entry):
+        known = own.get(name) or find_dimension(name)
+        if known is not None:
+            units[name] = known.unit
+    return units
+
+
+def _names(entry: MapEntry) -> list[str]:
+    return [entry.target, *(term.dimension for term in entry.terms)]
+
+
+def _note_unknown(row: SheetRow, intake: Intake, entry: MapEntry, units: dict[str, str]) -> None:
+    spellings = [spelling for known in KNOWN_DIMENSIONS for spelling in (known.name, *known.aliases)]
+    for name in _names(entry):
+        if name not in units:
+            intake.note(
+                row,
+                "formula",
+                f"{name} is no known condition, and no conditions set has it" + near(name, spellings),
+                "write the condition as the sheet Conditions or the evidence names it",
+                rule="workbook-unknown-input",
+                why="what no record and no conditions set states stays unstated, and with it what is made of it",
+            )
+
+
+def _check_units(entry: MapEntry, units: dict[str, str]) -> None:
+    """Work the formula out once, in the units of its conditions; ConditionsError where they do not go together."""
+    if any(term.dimension not in units for term in entry.terms):
+        return
+    stated = {term.dimension: np.ones(1) for term in entry.terms}
+    trial = ConditionMap(id="trial", entries=(entry,))
+    made = map_columns(trial, Columns(1, stated, {}, {name: units[name] for name in stated})).units
+    unit, usual = made[entry.target], units.get(entry.target)
+    if usual is not None and not _suits(unit, usual):
+        raise ConditionsError(
+            f"the formula gives {entry.target} in {unit or 'plain numbers'}, "
+            f"but it is in {usual or 'plain numbers'}",
+            hint=f"write the parts of the formula so that {usual or 'a plain number'} comes of them",
+        )
+
+
+def _suits(unit: str, usual: str) -> bool:
+    if not unit or not usual:
+        return unit == usual
+    return compatible(parse_unit(unit), parse_unit(usual))
 
 
 SHEET = Sheet(LAYOUT, ConditionMap, read, grouped=True)

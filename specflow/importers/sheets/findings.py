@@ -29,7 +29,7 @@ WORKBOOK_FINDINGS: dict[str, str] = {
     "workbook-uncertainty-without-k": "An expanded uncertainty has no coverage factor.",
     "workbook-unit-kind": "The unit of a limit is of another kind than its parameter's.",
     "workbook-unknown-column": "A column is not known and was not read.",
-    "workbook-unknown-input": "A limit refers to a name that is neither declared nor a condition.",
+    "workbook-unknown-input": "A limit or a condition map refers to a name that is neither declared nor a condition.",
     "workbook-unknown-parameter": "The dictionary does not know a parameter, or knows several of that name.",
     "workbook-unknown-reference": "An id refers to nothing in the workbook or the project.",
     "workbook-unknown-sheet": "A sheet is not known and was not read.",

@@ -132,3 +132,60 @@ def test_a_map_that_cannot_be_read_is_one_finding(
     draft = read_sheets(tmp_path, blocks=[UT], condition_maps=rows)
     assert words in rejected(draft).message
     assert not any(isinstance(one, ConditionMap) for one in draft.documents)
+
+
+def condition_map(tmp_path: Path, formula: str, **sheets: Any) -> Draft:
+    return read_sheets(tmp_path, condition_maps=[{"ID": "CM-1", "Formula": formula}], **sheets)
+
+
+@pytest.mark.parametrize(
+    ("formula", "says"),
+    [
+        ("temperature_case = temperature_ambient + 20 GHz", "GHz"),
+        (
+            "temperature_case = 5 V",
+            "the formula gives temperature_case in V, but it is in °C",
+        ),
+        ("if_frequency = frequency - temperature_ambient", "°C"),
+        ("supply_voltage = 2 * frequency", "the formula gives supply_voltage in Hz, but it is in V"),
+    ],
+)
+def test_a_condition_map_whose_units_do_not_go_together_is_refused(
+    tmp_path: Path, formula: str, says: str
+) -> None:
+    draft = condition_map(tmp_path, formula)
+    (finding,) = draft.findings
+    assert finding.severity is Severity.ERROR
+    assert says in finding.message and finding.remedy
+    assert finding.origin is not None and finding.origin.cell == "B2"
+    assert not draft.documents
+
+
+@pytest.mark.parametrize(
+    "formula",
+    [
+        "temperature_case = temperature_ambient + 18 K",
+        "frequency = frequency - 24.5 GHz",
+        "if_frequency = frequency - lo_frequency",
+        "input_level [dBm] = power_level + 20 dB",
+        "supply_voltage = 5 V",
+    ],
+)
+def test_condition_maps_whose_units_go_together_are_taken(tmp_path: Path, formula: str) -> None:
+    draft = condition_map(tmp_path, formula)
+    assert len(draft.documents) == 1
+    assert not [one for one in draft.findings if one.severity is Severity.ERROR]
+
+
+def test_a_condition_map_that_reads_what_nobody_states_says_so(tmp_path: Path) -> None:
+    draft = condition_map(tmp_path, "temperature_case = temperature_ambeint + 18 K")
+    (finding,) = draft.findings
+    assert (finding.rule, finding.severity) == ("workbook-unknown-input", Severity.WARNING)
+    assert finding.message.startswith("temperature_ambeint is no known condition")
+    assert "nearest: temperature_ambient" in finding.message
+
+
+def test_a_condition_of_ones_own_is_known_to_a_condition_map_by_its_conditions_set(tmp_path: Path) -> None:
+    own = [{"ID": "CS-1", "Dimension": "fan_pressure", "Required": "20, 40 Pa"}]
+    draft = condition_map(tmp_path, "fan_pressure = fan_pressure - 5 Pa", conditions=own)
+    assert not draft.findings
