@@ -14,8 +14,8 @@ from datetime import date
 from typing import Any
 
 from specflow.conditions import conditions_difference
-from specflow.errors import UnitError
-from specflow.limits import limit_difference
+from specflow.errors import ExpressionError, UnitError
+from specflow.limits import limit_difference, parse_limit
 from specflow.model.base import Document
 from specflow.model.conditions import ConditionsSet
 from specflow.model.limit import Limit
@@ -223,6 +223,23 @@ def _bandwidth(hertz: float | None) -> str:
     return f"{format_value(hertz / size)} {name}"
 
 
+def _frequency(words: str) -> Words:
+    def say(difference: Difference) -> str:
+        old, new = _bandwidth(difference.before), _bandwidth(difference.after)
+        return f"{words} is now {new or 'not stated'} (was {old or 'not stated'})"
+
+    return say
+
+
+def _permitted(difference: Difference) -> str:
+    """A permitted limit is kept as text; one that needs its requirement's parameter to be read is shown as written."""
+    try:
+        before, after = (parse_limit(text) for text in difference.texts)
+    except ExpressionError:
+        return _plainly(difference)
+    return limit_difference(before, after) or "written otherwise, the same in meaning"
+
+
 def _value(unit_field: str) -> Words:
     def say(difference: Difference) -> str:
         units = (
@@ -279,6 +296,9 @@ MEANINGS: Mapping[tuple[str, str], Words] = {
     ("declared_value", "value"): _value("unit"),
     ("uncertainty", "standard_uncertainty"): _value("unit"),
     ("uncertainty", "residual"): _value("residual_unit"),
+    ("uncertainty", "frequency_from_hz"): _frequency("frequency from"),
+    ("uncertainty", "frequency_to_hz"): _frequency("frequency to"),
+    ("waiver", "permitted"): _permitted,
     ("budget", "requirements"): _joined_and_left("now serves", "no longer serves"),
     ("budget", "quantity"): _quantity,
     ("budget", "lines"): _budget_lines,

@@ -18,6 +18,7 @@ from specflow.model.base import Document, code_key
 from specflow.model.block import Plane, Tier
 from specflow.model.change import Change
 from specflow.model.conditions import Combination
+from specflow.model.declared import UncertaintyEntry
 from specflow.model.nouns import NOUN_BY_DOCUMENT, NOUN_BY_NAME
 from specflow.model.origin import Origin
 from specflow.model.requirement import Obligation, OpenValue, Requirement, Source
@@ -42,6 +43,11 @@ from tests.builders import (
     at_least,
     at_most,
 )
+
+
+def an_uncertainty(**fields: Any) -> UncertaintyEntry:
+    line = {"id": "U-1", "set_up": "Range A", "parameter": "eirp", "standard_uncertainty": 0.4, "unit": "dB"}
+    return UncertaintyEntry(**(line | fields))
 
 
 def documents(*given: Document) -> Mapping[str, Mapping[str, Document]]:
@@ -221,6 +227,11 @@ def test_a_conditions_set_typed_otherwise_keeps_its_revision() -> None:
         (a_declared_value(value=0.0, unit="W"), {"value": 30.0, "unit": "dBm"}, ""),
         (a_waiver(), {"expires_on": date(2027, 1, 30)}, "expires on 30 days later (2026-12-31 → 2027-01-30)"),
         (a_waiver(), {"expires_on": date(2026, 12, 30)}, "expires on 1 day earlier (2026-12-31 → 2026-12-30)"),
+        (a_waiver(permitted=">= 30 dB"), {"permitted": ">= 29 dB"}, "relaxed by 1 dB (30 -> 29 dB)"),
+        (a_waiver(permitted=">= 30 dB"), {"permitted": "30 dB min"}, "written otherwise, the same in meaning"),
+        (a_waiver(permitted="30"), {"permitted": "29"}, ""),
+        (an_uncertainty(), {"frequency_from_hz": 71e9}, "frequency from is now 71 GHz (was not stated)"),
+        (an_uncertainty(frequency_to_hz=5e6), {"frequency_to_hz": 6e6}, "frequency to is now 6 MHz (was 5 MHz)"),
         (a_requirement(), {"obligation": Obligation.SHOULD}, ""),
     ],
 )  # fmt: skip

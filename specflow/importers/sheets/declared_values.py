@@ -12,7 +12,7 @@ from specflow.importers.sheets.sheet import MARK_COLUMN, Sheet, each_row
 from specflow.model.base import code_key
 from specflow.model.declared import DeclaredValue
 from specflow.model.sheet import SheetColumn, SheetLayout
-from specflow.units import Quantity, format_unit, parse_quantity, parse_unit
+from specflow.units import Quantity, format_quantity, format_unit, parse_quantity, parse_unit
 
 _NAME = re.compile(r"[A-Za-z_][A-Za-z0-9_]*")
 _LETTERS = re.compile(r"[A-Za-zµμΩ°%]")
@@ -88,6 +88,9 @@ def build(row: SheetRow, intake: Intake) -> DeclaredValue | None:
     quantity = unit_cell(row, "value", "unit")
     if quantity is None:
         return None
+    applies_to = row.prose("applies_to")
+    held = f"{name} is {format_quantity(float(quantity.value), quantity.unit)}"
+    intake.echo(row.subject, held + (f" for {applies_to}" if applies_to else ""))
     return row.build(
         DeclaredValue,
         id=row.subject,
@@ -97,7 +100,7 @@ def build(row: SheetRow, intake: Intake) -> DeclaredValue | None:
         unit=format_unit(quantity.unit),
         declared_on=row.date("declared_on"),
         declared_by=row.prose("declared_by"),
-        applies_to=row.prose("applies_to"),
+        applies_to=applies_to,
         note=row.prose("note"),
         origin=row.origin("value"),
     )

@@ -34,4 +34,5 @@ WORKBOOK_FINDINGS: dict[str, str] = {
     "workbook-unknown-reference": "An id refers to nothing in the workbook or the project.",
     "workbook-unknown-sheet": "A sheet is not known and was not read.",
     "workbook-unknown-word": "A plane or statistic is new to block and parameter.",
+    "workbook-waives-nothing": "A waiver permits no more than the requirement does.",
 }

@@ -12,7 +12,15 @@ from specflow.importers.sheets.sheet import MARK_COLUMN, Sheet, each_row
 from specflow.model.declared import UncertaintyEntry
 from specflow.model.parameter import Parameter
 from specflow.model.sheet import SheetColumn, SheetLayout
-from specflow.units import Quantity, convert, format_unit, parse_quantity, parse_unit, tolerance_unit
+from specflow.units import (
+    Quantity,
+    convert,
+    format_quantity,
+    format_unit,
+    parse_quantity,
+    parse_unit,
+    tolerance_unit,
+)
 
 _IN_CELL = re.compile(
     r"^(?:U\s*=\s*|±\s*|\+/-\s*)?(?P<amount>.+?)\s*(?:[,;(]\s*k\s*=\s*(?P<k>[0-9.]+)\s*\)?)?$"
@@ -124,6 +132,7 @@ def build(row: SheetRow, intake: Intake) -> UncertaintyEntry | None:
     )
     if spread is None or parameter is None:
         return None
+    intake.echo(row.subject, _words(row, spread, parameter))
     return row.build(
         UncertaintyEntry,
         id=row.subject,
@@ -142,6 +151,16 @@ def build(row: SheetRow, intake: Intake) -> UncertaintyEntry | None:
         source=row.prose("source"),
         origin=row.origin("stated"),
     )
+
+
+def _words(row: SheetRow, spread: Quantity, parameter: Parameter) -> str:
+    """Say how the line was read: its standard uncertainty, and where it holds."""
+    said = f"{parameter.title} on {row.text('set_up')}: u = {format_quantity(float(spread.value), spread.unit)} (k = 1)"
+    for what in ("frequency", "level"):
+        low, high = row.text(f"{what}_from"), row.text(f"{what}_to")
+        if low or high:
+            said += f", {what} {' '.join(filter(None, (low and f'from {low}', high and f'to {high}')))}"
+    return said
 
 
 def _standard_uncertainty(row: SheetRow, parameter: Parameter | None) -> Quantity | None:

@@ -9,7 +9,9 @@ from specflow.importers.sheets.items import known_items
 from specflow.importers.sheets.limit_cells import limit_cell
 from specflow.importers.sheets.row import SheetRow
 from specflow.importers.sheets.sheet import MARK_COLUMN, Sheet, each_row
+from specflow.limits import limit_difference, limit_words
 from specflow.model.decision import Nonconformance, Waiver
+from specflow.model.limit import Limit
 from specflow.model.requirement import Requirement
 from specflow.model.sheet import SheetColumn, SheetLayout
 
@@ -111,6 +113,8 @@ def build(row: SheetRow, intake: Intake) -> Waiver | None:
             "an approved waiver names nobody who approved it",
             "name the approver, or set another state",
         )
+    if permitted is not None and requirement is not None:
+        _say_what_is_waived(row, intake, permitted, requirement)
     return row.build(
         Waiver,
         id=row.subject,
@@ -130,6 +134,26 @@ def build(row: SheetRow, intake: Intake) -> Waiver | None:
         state=state,
         nonconformance=intake.reference(row, "nonconformance", Nonconformance),
         origin=row.origin("permitted"),
+    )
+
+
+def _say_what_is_waived(row: SheetRow, intake: Intake, permitted: Limit, requirement: Requirement) -> None:
+    """Say the permitted limit back, and against the limit itself; one that waives nothing is doubtful."""
+    parameter = intake.dictionary.get(requirement.quantity.parameter)
+    change = limit_difference(requirement.limit, permitted)
+    intake.echo(row.subject, "; ".join(filter(None, (limit_words(permitted, parameter), change))))
+    if not change:
+        why = "is the limit itself"
+    elif "tightened" in change and "relaxed" not in change:
+        why = f"is stricter than the limit ({change})"
+    else:
+        return
+    intake.note(
+        row,
+        "permitted",
+        f"the permitted limit {permitted.text!r} {why} of {requirement.id}, so nothing is waived",
+        "write the limit that must still be met, which is looser than that of the requirement",
+        rule="workbook-waives-nothing",
     )
 
 

@@ -162,6 +162,30 @@ def test_a_waiver_that_cannot_be_read_is_one_finding(
     assert words in rejected(read_sheets(tmp_path, project, waivers=[WAIVER | cells])).message
 
 
+def test_a_permitted_limit_is_said_back_against_the_limit(tmp_path: Path, project: Snapshot) -> None:
+    draft = read_sheets(tmp_path, project, waivers=[WAIVER])
+    assert draft.echoes["W-1"] == "EIRP: at least 44.5 dBm; relaxed by 0.5 dB (45 -> 44.5 dBm)"
+
+
+@pytest.mark.parametrize(
+    ("permitted", "says"),
+    [
+        (">= 46 dBm", "is stricter than the limit (tightened by 1 dB (45 -> 46 dBm)) of R-1"),
+        (">= 45 dBm", "is the limit itself of R-1"),
+        (">= 15.5 dBW", "tightened by 0.5 dB"),
+    ],
+)
+def test_a_waiver_that_waives_nothing_is_doubtful_and_taken(
+    tmp_path: Path, project: Snapshot, permitted: str, says: str
+) -> None:
+    draft = read_sheets(tmp_path, project, waivers=[WAIVER | {"Permitted limit": permitted}])
+    (finding,) = draft.findings
+    assert (finding.rule, finding.severity) == ("workbook-waives-nothing", Severity.WARNING)
+    assert says in finding.message
+    assert finding.origin is not None and finding.origin.cell == "C2"
+    assert len(draft.documents) == 1
+
+
 def test_a_nonconformance_and_its_waiver_in_one_workbook(tmp_path: Path, project: Snapshot) -> None:
     nonconformance = {
         "ID": "NC-1",

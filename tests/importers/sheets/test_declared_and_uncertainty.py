@@ -32,6 +32,19 @@ def rejected(draft: Draft) -> Finding:
     return finding
 
 
+def test_declared_values_and_uncertainties_are_said_back(tmp_path: Path) -> None:
+    line = LINE | {"Uncertainty": "0,8 dB", "k": "2", "Frequency from": "27.5 GHz", "Level to": "45 dBm"}
+    draft = read_sheets(
+        tmp_path,
+        declared_values=[{"Name": "P_rated", "Value": "19,5", "Unit": "dBm", "Variant": "M"}],
+        uncertainty=[line],
+    )
+    assert draft.echoes == {
+        "P_rated": "P_rated is 19.5 dBm for M",
+        "U-1": "EIRP on Range A: u = 0.4 dB (k = 1), frequency from 27.5 GHz, level to 45 dBm",
+    }
+
+
 @pytest.mark.parametrize(
     "cells",
     [{"Value": "38 dBm"}, {"Value": 38, "Unit": "dBm"}, {"Value [dBm]": 38}, {"Value": "38", "Unit": "dBm"}],
