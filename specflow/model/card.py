@@ -98,7 +98,7 @@ class Card(Document):
     """Everything shown of one requirement.
 
     ``facts`` are (name, value) pairs; ``cautions`` the sentences that radiated power or high power call for;
-    ``pictures`` those of the budgets that serve it.
+    ``pictures`` those of the budgets that serve it; ``findings`` is None as long as the rules have not run.
     """
 
     id: str
@@ -115,6 +115,6 @@ class Card(Document):
     grids: tuple[ProofGrid, ...] = ()
     trail: tuple[TrailStep, ...] = ()
     remarks: tuple[str, ...] = ()
-    findings: tuple[Finding, ...] = ()
+    findings: tuple[Finding, ...] | None = ()
     cautions: tuple[str, ...] = ()
     pictures: tuple[Picture, ...] = ()

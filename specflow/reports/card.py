@@ -32,13 +32,13 @@ def requirement_card(
     requirement: Requirement,
     snapshot: Snapshot,
     results: Results,
-    findings: Sequence[Finding],
+    findings: Sequence[Finding] | None,
     dictionary: Dictionary,
     outcomes: Sequence[BudgetOutcome] = (),
 ) -> Card:
     """Return the card of one requirement; only its own evidence is read.
 
-    ``outcomes`` are those of the budgets that serve it.
+    ``findings`` are those of the whole project, None when they are not known yet. ``outcomes`` are those of the budgets that serve it.
     """
     status = results.of(requirement.id)
     finder = OriginFinder(snapshot)
@@ -60,7 +60,7 @@ def requirement_card(
         grids=proof_grids(requirement, status, snapshot, finder),
         trail=requirement_trail(requirement, snapshot, results, finder=finder, most_points=POINTS_IN_TRAIL),
         remarks=status.remarks,
-        findings=findings_about(findings, requirement.id),
+        findings=None if findings is None else findings_about(findings, requirement.id),
         cautions=(EXPOSURE_CAUTION,) if is_radiated(requirement, dictionary) else (),
         pictures=predicted_pictures(requirement, outcomes, titles(dictionary)),
     )

@@ -12,7 +12,7 @@ from textual.theme import Theme
 from textual.timer import Timer
 
 from specflow.errors import SpecflowError
-from specflow.tui.messages import CardMade, CardWanted, DataLoaded, RevisionSeen, WorkFailed
+from specflow.tui.messages import CardMade, CardWanted, DataLoaded, FindingsMade, RevisionSeen, WorkFailed
 from specflow.tui.screens.browse import BrowseScreen
 from specflow.workflows.browse import BrowseData
 
@@ -93,6 +93,14 @@ class BrowseApp(App[None]):
         except SpecflowError as error:
             self.post_message(WorkFailed(str(error.message), error.hint))
 
+    @work(thread=True, exclusive=True, group="findings", exit_on_error=False)
+    def find(self, data: BrowseData, id: str) -> None:
+        """Find out what the rules say about a requirement; the first time they have to run."""
+        try:
+            self.post_message(FindingsMade(data, id, data.findings(id)))
+        except SpecflowError as error:
+            self.post_message(WorkFailed(str(error.message), error.hint))
+
     def on_data_loaded(self, message: DataLoaded) -> None:
         """Show the project; the tree then asks for the card under its cursor."""
         again = self._data is not None
@@ -121,6 +129,14 @@ class BrowseApp(App[None]):
         """Show the card, unless the project or the cursor went on."""
         if message.data is self._data and message.card.id.casefold() == self._wanted.casefold():
             self.browse.show_card(message.card)
+            if message.card.findings is None:  # not before: the rules would hold up the first card
+                self.find(message.data, message.card.id)
+
+    def on_findings_made(self, message: FindingsMade) -> None:
+        """Add the findings to the card, if it is still the one that is shown."""
+        card = self.browse.card_view.card
+        if message.data is self._data and card is not None and card.id == message.id:
+            self.browse.show_card(card.model_copy(update={"findings": message.findings}))
 
     def on_work_failed(self, message: WorkFailed) -> None:
         """Say what could not be done: in place of the card when there is nothing else to show."""

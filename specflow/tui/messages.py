@@ -5,6 +5,7 @@ from __future__ import annotations
 from textual.message import Message
 
 from specflow.model.card import Card
+from specflow.model.finding import Finding
 from specflow.workflows.browse import BrowseData
 
 
@@ -23,6 +24,16 @@ class CardMade(Message):
         super().__init__()
         self.data = data
         self.card = card
+
+
+class FindingsMade(Message):
+    """The findings of a card that was made before the rules ran."""
+
+    def __init__(self, data: BrowseData, id: str, findings: tuple[Finding, ...]) -> None:
+        super().__init__()
+        self.data = data
+        self.id = id
+        self.findings = findings
 
 
 class RevisionSeen(Message):

@@ -5,15 +5,17 @@ from __future__ import annotations
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from datetime import date
+from threading import Lock
 
 from specflow.model.base import code_key
 from specflow.model.budget import Budget
 from specflow.model.budget_outcome import BudgetOutcome
 from specflow.model.card import Card
+from specflow.model.finding import Finding
 from specflow.model.outline import Outline
 from specflow.model.requirement import Requirement
 from specflow.reports.about import cautions
-from specflow.reports.card import requirement_card
+from specflow.reports.card import findings_about, requirement_card
 from specflow.reports.outline import headline, outlines
 from specflow.reports.status import points_sentence
 from specflow.store import ProjectStore
@@ -24,7 +26,11 @@ from specflow.workflows.subjects import not_found
 
 @dataclass(frozen=True, slots=True)
 class BrowseData:
-    """What is shown of a project at one revision. ``card`` makes the card of a requirement; it may take a moment."""
+    """What is shown of a project at one revision. ``card`` makes the card of a requirement; it may take a moment.
+
+    ``findings`` gives those about a requirement. The first time it runs the rules, which takes longer; cards made
+    before have none.
+    """
 
     project: str
     revision: int
@@ -34,6 +40,7 @@ class BrowseData:
     outlines: Sequence[Outline]
     cautions: Sequence[str]
     card: Callable[[str], Card]
+    findings: Callable[[str], tuple[Finding, ...]]
 
 
 @dataclass(frozen=True, slots=True)
@@ -75,10 +82,26 @@ class _Predictions:
         return [outcome for outcome in found if not isinstance(outcome, str)]
 
 
+class _Findings:
+    """What the rules find; ``known`` is None until they ran."""
+
+    def __init__(self, evaluation: Evaluation) -> None:
+        self._evaluation = evaluation
+        self._one_at_a_time = Lock()
+        self.known: Sequence[Finding] | None = None
+
+    def about(self, code: str) -> tuple[Finding, ...]:
+        """Return the findings about a requirement, running the rules if nobody has."""
+        with self._one_at_a_time:
+            self.known = self._evaluation.findings
+        return findings_about(self.known, code)
+
+
 def browse_data(evaluation: Evaluation) -> BrowseData:
     """Return what is shown of an evaluated project."""
     snapshot, results = evaluation.snapshot, evaluation.results
     predictions = _Predictions(evaluation)
+    findings = _Findings(evaluation)
 
     def card(code: str) -> Card:
         requirement = snapshot.find(Requirement, code)
@@ -86,7 +109,7 @@ def browse_data(evaluation: Evaluation) -> BrowseData:
             raise not_found("requirement", code, [one.id for one in snapshot.requirements])
         predicted = predictions(requirement)
         return requirement_card(
-            requirement, snapshot, results, evaluation.findings, evaluation.dictionary, predicted
+            requirement, snapshot, results, findings.known, evaluation.dictionary, predicted
         )
 
     return BrowseData(
@@ -98,4 +121,5 @@ def browse_data(evaluation: Evaluation) -> BrowseData:
         outlines=outlines(snapshot, results),
         cautions=cautions(snapshot, evaluation.dictionary),
         card=card,
+        findings=findings.about,
     )

@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import threading
+from collections.abc import Callable
+from dataclasses import replace
 from datetime import date
 from pathlib import Path
 
@@ -11,10 +13,14 @@ from textual.pilot import Pilot
 
 from specflow.errors import StoreError
 from specflow.model.card import PointState
+from specflow.model.finding import Finding
+from specflow.model.outline import Outline
 from specflow.tui import app as app_module
 from specflow.tui.app import BrowseApp
+from specflow.tui.screens import browse as browse_module
 from specflow.tui.screens.help import HelpScreen
 from specflow.tui.widgets.proof_grid import Place, ProofGridView
+from specflow.tui.widgets.requirement_tree import RequirementTree
 from specflow.workflows.browse import BrowseData, Browsing, browse_data
 from specflow.workflows.evaluate_project import Evaluation
 from tests import harbour
@@ -171,9 +177,7 @@ def test_o_leaves_what_is_open() -> None:
             )
             for outline in data.outlines
         ]
-        return BrowseData(
-            data.project, 1, data.as_of, data.headline, data.totals, closed, data.cautions, data.card
-        )
+        return replace(data, revision=1, outlines=closed)
 
     async def scenario(pilot: Pilot[None], app: BrowseApp) -> None:
         await pressed(pilot, "o")
@@ -296,16 +300,7 @@ def test_cards_are_made_in_threads_and_only_for_what_is_looked_at() -> None:
         made.append((code, threading.current_thread() is threading.main_thread()))
         return data.card(code)
 
-    watched = BrowseData(
-        data.project,
-        data.revision,
-        data.as_of,
-        data.headline,
-        data.totals,
-        data.outlines,
-        data.cautions,
-        card,  # type: ignore[arg-type]
-    )
+    watched = replace(data, card=card)  # type: ignore[arg-type]
 
     async def scenario(pilot: Pilot[None], app: BrowseApp) -> None:
         assert [code for code, _ in made] == ["SYS-1"]
@@ -317,3 +312,53 @@ def test_cards_are_made_in_threads_and_only_for_what_is_looked_at() -> None:
         assert not any(in_main for _, in_main in made)
 
     drive(scenario, an_app(lambda: watched))
+
+
+def test_a_card_is_shown_before_the_rules_ran_and_gets_its_findings_later() -> None:
+    go = threading.Event()
+    data = browse_data(evaluation())
+
+    def findings(code: str) -> tuple[Finding, ...]:
+        assert go.wait(30)
+        return data.findings(code)
+
+    async def scenario(pilot: Pilot[None], app: BrowseApp) -> None:
+        async def until(done: Callable[[], bool]) -> None:
+            for _ in range(200):
+                if done():
+                    return
+                await pilot.pause(0.05)
+            raise AssertionError(screen_text(app))
+
+        await until(lambda: card_of(app) == "SYS-1")
+        card = app.browse.card_view.card
+        assert card is not None and card.findings is None
+        go.set()
+        await until(lambda: app.browse.card_view.card is not card)
+        filled = app.browse.card_view.card
+        assert filled is not None and filled.findings == data.findings("SYS-1") != ()
+        await pressed(pilot, "n")
+        shown_now = app.browse.card_view.card
+        assert shown_now is not None and shown_now.findings == data.findings("PA-1")
+
+    drive(scenario, an_app(lambda: replace(data, findings=findings)), at_once=True)
+
+
+def test_a_large_tree_is_set_anew_once_for_many_keys(monkeypatch: pytest.MonkeyPatch) -> None:
+    drawn: list[str] = []
+    show = RequirementTree.show
+
+    def counted(self: RequirementTree, outline: Outline, *, words: str = "", open_only: bool = False) -> None:
+        drawn.append(words)
+        show(self, outline, words=words, open_only=open_only)
+
+    monkeypatch.setattr(RequirementTree, "show", counted)
+    monkeypatch.setattr(browse_module, "TYPING_SECONDS", 1.0)
+
+    async def scenario(pilot: Pilot[None], app: BrowseApp) -> None:
+        await pilot.press("slash", *"gain lna", "enter")
+        await settle(pilot)
+        assert drawn == ["", "gain lna"], "enter does not wait for the pause"
+        assert shown(app) == ["SYS-2", "LNA-2"]
+
+    drive(scenario)

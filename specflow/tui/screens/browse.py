@@ -9,6 +9,7 @@ from textual.app import ComposeResult
 from textual.binding import Binding, BindingType
 from textual.containers import Horizontal, Vertical
 from textual.screen import Screen
+from textual.timer import Timer
 from textual.widgets import Footer
 
 from specflow.model.card import Card
@@ -21,6 +22,7 @@ from specflow.tui.widgets.requirement_tree import RequirementTree
 from specflow.tui.widgets.search import SearchLine
 from specflow.workflows.browse import BrowseData
 
+TYPING_SECONDS = 0.12
 WIDE = 110  # from this many columns on, the tree has room for titles
 
 
@@ -60,6 +62,7 @@ class BrowseScreen(Screen[None]):
         self._order = 0
         self._words = ""
         self._open_only = False
+        self._typing: Timer | None = None
 
     def compose(self) -> ComposeResult:
         yield Heading()
@@ -79,6 +82,11 @@ class BrowseScreen(Screen[None]):
     def card_view(self) -> CardView:
         """The card."""
         return self.query_one(CardView)
+
+    @property
+    def is_typing(self) -> bool:
+        """Whether words were typed that the tree does not show yet."""
+        return self._typing is not None
 
     def on_mount(self) -> None:
         """Begin in the tree."""
@@ -136,17 +144,32 @@ class BrowseScreen(Screen[None]):
         return f"{data.totals}\n\nChoose a requirement to see its card."
 
     def on_search_changed(self, message: SearchChanged) -> None:
-        """Filter while the person types."""
+        """Filter when the person pauses: setting a large tree anew takes longer than the next key."""
         self._words = message.words
-        self._refresh_tree()
+        self._forget_typing()
+        self._typing = self.set_timer(TYPING_SECONDS, self._filter)
+
+    def _filter(self) -> None:
+        """Filter by what was typed, unless that was done."""
+        if self._typing is not None:
+            self._forget_typing()
+            self._refresh_tree()
 
     def on_search_ended(self, message: SearchEnded) -> None:
         """Go back to the tree, filtered or whole."""
-        if not message.kept:
+        if message.kept:
+            self._filter()
+        else:
+            self._forget_typing()
             self.query_one(SearchLine).close()
             self._words = ""
             self._refresh_tree()
         self.requirements.focus()
+
+    def _forget_typing(self) -> None:
+        if self._typing is not None:
+            self._typing.stop()
+            self._typing = None
 
     def action_search(self) -> None:
         """Type what to look for."""

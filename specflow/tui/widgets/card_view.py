@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from typing import ClassVar
 
 from textual.app import ComposeResult
@@ -13,6 +13,7 @@ from textual.widget import Widget
 from textual.widgets import Static
 
 from specflow.model.card import Card
+from specflow.model.finding import Finding
 from specflow.tui.widgets.facts import Facts
 from specflow.tui.widgets.findings import FindingsView
 from specflow.tui.widgets.margin_bar import MarginBarView
@@ -120,7 +121,15 @@ def _parts(card: Card) -> Iterator[Widget]:
             yield PictureView(picture)
     yield Rule("trail")
     yield TrailView(card.trail)
-    yield Rule(f"findings ({len(card.findings)})")
-    yield FindingsView(card.findings) if card.findings else Static(Content("none"), classes="text")
+    yield from _findings(card.findings)
     for caution in card.cautions:
         yield Static(Content(f"Caution. {caution}"), classes="caution")
+
+
+def _findings(findings: Sequence[Finding] | None) -> Iterator[Widget]:
+    if findings is None:
+        yield Rule("findings")
+        yield Static(Content("the rules are running ..."), classes="text")
+        return
+    yield Rule(f"findings ({len(findings)})")
+    yield FindingsView(findings) if findings else Static(Content("none"), classes="text")
