@@ -21,6 +21,11 @@ Flags = bool | NDArray[np.bool_]
 #: The coverage factor at which all guard bands are stated: U = 2u.
 COVERAGE_FACTOR = 2.0
 
+# Looking a member up in an enumeration costs as much as an array operation; these are used for every requirement.
+_PASS, _FAIL = int(Verdict.PASS), int(Verdict.FAIL)
+_INCONCLUSIVE, _UNDECIDABLE = int(Verdict.INCONCLUSIVE), int(Verdict.UNDECIDABLE)
+_NOWHERE = np.zeros((), bool)
+
 
 @dataclass(frozen=True, slots=True)
 class AcceptanceInterval:
@@ -69,31 +74,44 @@ class AcceptanceInterval:
 
     def met(self, low: NDArray[np.float64], high: NDArray[np.float64]) -> NDArray[np.bool_]:
         """Return where the whole interval [low, high] meets both sides."""
-        result = np.ones(low.shape, bool)
-        if self.lower is not None:
-            edge = self.lower - self.slack
-            result &= _either(self.lower_strict, low > self.lower + self.slack, low >= edge)
-        if self.upper is not None:
-            edge = self.upper + self.slack
-            result &= _either(self.upper_strict, high < self.upper - self.slack, high <= edge)
-        return result
+        above = None if self.lower is None else _not_below(low, self.lower, self.slack, self.lower_strict)
+        if self.upper is None:
+            return np.ones(low.shape, bool) if above is None else above
+        below = _not_above(high, self.upper, self.slack, self.upper_strict)
+        return below if above is None else above & below
 
     def missed(self, low: NDArray[np.float64], high: NDArray[np.float64]) -> NDArray[np.bool_]:
         """Return where no value of the interval meets the bounds: all of it lies beyond one side."""
         result = np.zeros(low.shape, bool)
         if self.lower is not None:
-            edge = self.lower - self.slack
-            result |= _either(self.lower_strict, high <= self.lower + self.slack, high < edge)
+            result |= _below(high, self.lower, self.slack, self.lower_strict)
         if self.upper is not None:
-            edge = self.upper + self.slack
-            result |= _either(self.upper_strict, low >= self.upper - self.slack, low > edge)
+            result |= _above(low, self.upper, self.slack, self.upper_strict)
         return result
 
 
-def _either(flag: Flags, then: NDArray[np.bool_], otherwise: NDArray[np.bool_]) -> NDArray[np.bool_]:
-    if isinstance(flag, bool | np.bool_):
-        return then if flag else otherwise
-    return np.where(flag, then, otherwise)
+def _not_below(value: NDArray[np.float64], edge: Floats, slack: Floats, strict: Flags) -> NDArray[np.bool_]:
+    if isinstance(strict, bool | np.bool_):
+        return np.asarray(value > edge + slack if strict else value >= edge - slack)
+    return np.where(strict, value > edge + slack, value >= edge - slack)
+
+
+def _not_above(value: NDArray[np.float64], edge: Floats, slack: Floats, strict: Flags) -> NDArray[np.bool_]:
+    if isinstance(strict, bool | np.bool_):
+        return np.asarray(value < edge - slack if strict else value <= edge + slack)
+    return np.where(strict, value < edge - slack, value <= edge + slack)
+
+
+def _below(value: NDArray[np.float64], edge: Floats, slack: Floats, strict: Flags) -> NDArray[np.bool_]:
+    if isinstance(strict, bool | np.bool_):
+        return np.asarray(value <= edge + slack if strict else value < edge - slack)
+    return np.where(strict, value <= edge + slack, value < edge - slack)
+
+
+def _above(value: NDArray[np.float64], edge: Floats, slack: Floats, strict: Flags) -> NDArray[np.bool_]:
+    if isinstance(strict, bool | np.bool_):
+        return np.asarray(value >= edge - slack if strict else value > edge + slack)
+    return np.where(strict, value >= edge - slack, value > edge + slack)
 
 
 def decide(
@@ -112,33 +130,41 @@ def decide(
     """
     if rule is RuleName.SIMPLE:
         return _binary(low, high, bounds)
-    unknown = np.isnan(guard)
+    inner = bounds.inward(guard)
     if rule is RuleName.GUARDED:
-        verdicts = _binary(low, high, bounds.inward(guard))
+        verdicts = _binary(low, high, inner)
     else:
-        verdicts = _four_way(low, high, bounds, guard)
-    verdicts[np.broadcast_to(_no_room(low, high, bounds, guard), low.shape)] = Verdict.UNDECIDABLE
-    verdicts[np.broadcast_to(unknown, low.shape)] = Verdict.INCONCLUSIVE
+        verdicts = _four_way(low, high, bounds, inner, guard)
+    no_room, unknown = _no_room(low, high, bounds, inner, guard), np.isnan(guard)
+    if np.count_nonzero(no_room):
+        verdicts[np.broadcast_to(no_room, low.shape)] = _UNDECIDABLE
+    if np.count_nonzero(unknown):
+        verdicts[np.broadcast_to(unknown, low.shape)] = _INCONCLUSIVE
     return verdicts
 
 
 def _binary(
     low: NDArray[np.float64], high: NDArray[np.float64], bounds: AcceptanceInterval
 ) -> NDArray[np.int8]:
-    verdicts = np.full(low.shape, Verdict.INCONCLUSIVE, np.int8)
-    verdicts[bounds.missed(low, high)] = Verdict.FAIL
-    verdicts[bounds.met(low, high)] = Verdict.PASS
+    verdicts = np.empty(low.shape, np.int8)
+    verdicts.fill(_INCONCLUSIVE)
+    verdicts[bounds.missed(low, high)] = _FAIL
+    verdicts[bounds.met(low, high)] = _PASS
     return verdicts
 
 
 def _four_way(
-    low: NDArray[np.float64], high: NDArray[np.float64], bounds: AcceptanceInterval, guard: Floats
+    low: NDArray[np.float64],
+    high: NDArray[np.float64],
+    bounds: AcceptanceInterval,
+    inner: AcceptanceInterval,
+    guard: Floats,
 ) -> NDArray[np.int8]:
     verdicts = np.full(low.shape, Verdict.INCONCLUSIVE, np.int8)
     verdicts[bounds.missed(low, high)] = Verdict.CONDITIONAL_FAIL
     verdicts[_beyond_doubt(low, high, bounds, guard)] = Verdict.FAIL
     verdicts[bounds.met(low, high)] = Verdict.CONDITIONAL_PASS
-    verdicts[bounds.inward(guard).met(low, high)] = Verdict.PASS
+    verdicts[inner.met(low, high)] = Verdict.PASS
     return verdicts
 
 
@@ -151,13 +177,17 @@ def _beyond_doubt(
 
 
 def _no_room(
-    low: NDArray[np.float64], high: NDArray[np.float64], bounds: AcceptanceInterval, guard: Floats
+    low: NDArray[np.float64],
+    high: NDArray[np.float64],
+    bounds: AcceptanceInterval,
+    inner: AcceptanceInterval,
+    guard: Floats,
 ) -> NDArray[np.bool_]:
     """Return where no reading could pass (w above half the tolerance), unless the violation is proven."""
-    room = np.asarray(bounds.inward(guard).leave_room)
-    if room.all():
-        return np.zeros((), bool)
-    return ~room & ~_beyond_doubt(low, high, bounds, guard)
+    room = inner.leave_room
+    if room is True or np.all(room):
+        return _NOWHERE
+    return ~np.asarray(room) & ~_beyond_doubt(low, high, bounds, guard)
 
 
 def nothing_acceptable(
@@ -207,9 +237,11 @@ def margins(
     """
     sides: list[NDArray[np.float64]] = []
     if bounds.lower is not None:
-        sides.append(np.where(np.isneginf(low), high, low) - bounds.lower)
+        worse = low if high is low else np.where(np.isneginf(low), high, low)
+        sides.append(worse - bounds.lower)
     if bounds.upper is not None:
-        sides.append(bounds.upper - np.where(np.isposinf(high), low, high))
+        worse = low if high is low else np.where(np.isposinf(high), low, high)
+        sides.append(bounds.upper - worse)
     if not sides:
         return np.full(low.shape, np.nan)
     return sides[0] if len(sides) == 1 else np.fmin(sides[0], sides[1])

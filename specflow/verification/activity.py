@@ -10,6 +10,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import lru_cache
+from math import isfinite
 
 import numpy as np
 from numpy.typing import NDArray
@@ -25,8 +26,8 @@ Codes = NDArray[np.int8]
 Flags = NDArray[np.bool_]
 
 
-_VERDICTS = len(Verdict)
-_FAILING = int(Verdict.CONDITIONAL_FAIL)
+_VERDICTS, _BY_CODE = len(Verdict), tuple(Verdict)
+_FAILING, _NONE = int(Verdict.CONDITIONAL_FAIL), int(Verdict.NONE)
 _NOTHING = np.int8(-1)
 
 
@@ -58,41 +59,44 @@ def summarise(
     """Roll the points of all items up to one activity. ``named`` are the ids of the items that must prove it."""
     chosen, missing_items = _provers(provers, items, named)
     needed = max(len(chosen) + missing_items, 1)
-    counts = [np.bincount(one.effective, minlength=_VERDICTS).tolist() for one in chosen]
-    failing = [
-        (one, _open_fails(one, items, one in chosen)) for one in items if one.effective.max() >= _FAILING
-    ]
-    failing = [(one, flags) for one, flags in failing if flags.any()]
-    verdicts = _verdicts(counts, failing, missing_items)
-    k = sum(one.results.k for one in chosen)
+    counts = {id(one): np.bincount(one.effective, minlength=_VERDICTS).tolist() for one in items}
+    failing: list[tuple[ItemPoints, Flags]] = []
+    for one in items:
+        if any(counts[id(one)][_FAILING:]):
+            flags = _open_fails(one, items, one in chosen)
+            if np.count_nonzero(flags):
+                failing.append((one, flags))
+    of_chosen = [counts[id(one)] for one in chosen]
+    verdicts = _verdicts(of_chosen, failing, missing_items)
+    k, n = sum([one.results.k for one in chosen]), points.size * needed
     governing = _governing(points, chosen, failing, unit)
     without, undecided = _undecided(provers, chosen, failing)
+    missing = points.size * missing_items
     result = ActivityResult(
         activity.id,
-        _state(activity, k, points.size * needed, items),
+        _state(activity, k, n, items),
         max(verdicts),
         k,
-        points.size * needed,
+        n,
         _count_failing(provers, failing),
-        sum(one[Verdict.NONE] for one in counts) + points.size * missing_items,
+        sum([one[_NONE] for one in of_chosen]) + missing,
         chosen[0].item if chosen else "",
         {one.item: one.results for one in items},
         governing,
         _smallest(points, chosen, failing, unit, governing),
-        any(np.count_nonzero(one.marginal) > 0 for one in chosen),
+        any(np.count_nonzero(one.marginal) for one in chosen),
         tuple(why),
-        without + points.size * missing_items,
+        without + missing,
         undecided,
     )
-    counted = any(np.count_nonzero(one.counts) > 0 for one in items)
-    return ActivityOutcome(
-        result, chosen, failing, verdicts, counted, any(map(_needs_re_verification, chosen))
-    )
+    counted = any(np.count_nonzero(one.counts) for one in items)
+    stale = any(_needs_re_verification(one) for one in chosen)
+    return ActivityOutcome(result, chosen, failing, verdicts, counted, stale)
 
 
 def _needs_re_verification(one: ItemPoints) -> bool:
     """Whether stale evidence stands at a point that nothing proves."""
-    return bool(np.count_nonzero(one.stale & (one.effective == Verdict.NONE)))
+    return bool(np.count_nonzero(one.stale)) and bool(np.any(one.stale & (one.effective == _NONE)))
 
 
 def _provers(
@@ -132,10 +136,10 @@ def _verdicts(
 ) -> frozenset[Verdict]:
     codes = {code for one in counts for code, count in enumerate(one) if count}
     for one, flags in failing:
-        codes.update(np.unique(one.effective[flags]).tolist())
+        codes.update(one.effective[flags].tolist())
     if missing_items or not codes:
-        codes.add(Verdict.NONE)
-    return frozenset(map(Verdict, codes))
+        codes.add(_NONE)
+    return frozenset([_BY_CODE[code] for code in codes])
 
 
 def _count_failing(provers: Provers, failing: Sequence[tuple[ItemPoints, Flags]]) -> int:
@@ -156,13 +160,15 @@ def _undecided(
     """
     without = undecided = 0
     for one in chosen:
-        rest = ~one.proved
+        settled = one.proved
         for other, flags in failing:
             if provers.rule == "any one" or other is one:
-                rest = rest & ~flags
-        empty = one.results.table < 0
-        without += int(np.count_nonzero(rest & empty))
-        undecided += int(np.count_nonzero(rest & ~empty))
+                settled = settled | flags
+        left = len(settled) - int(np.count_nonzero(settled))
+        if left:
+            empty = int(np.count_nonzero((one.results.table < 0) & ~settled))
+            without += empty
+            undecided += left - empty
     return without, undecided
 
 
@@ -171,7 +177,7 @@ def _state(activity: Activity, k: int, n: int, items: Sequence[ItemPoints]) -> P
         return PointsState.FULLY_COVERED
     if k:
         return PointsState.PARTIALLY_VERIFIED
-    if any(bool((one.results.table >= 0).any()) for one in items):
+    if any(np.count_nonzero(one.results.table >= 0) for one in items):
         return PointsState.IN_PROGRESS
     return PointsState.PLANNED if activity.planned else PointsState.NOT_PLANNED
 
@@ -183,15 +189,18 @@ def _governing(
     best: tuple[tuple[bool, int, float], ItemPoints, int] | None = None
     for one, allowed in _candidates(chosen, failing):
         verdict = np.where(allowed, one.effective, _NOTHING)
-        worst = int(verdict.max())
+        worst = int(verdict[verdict.argmax()])
         counts = worst >= 0
         if not counts:
             verdict = np.where(one.results.table >= 0, one.results.verdict, _NOTHING)
-            worst = int(verdict.max())
+            worst = int(verdict[verdict.argmax()])
         if worst < 0:
             continue
-        margin = np.where(verdict == worst, _sortable(one), np.inf)
-        place = int(margin.argmin()) if np.isfinite(margin).any() else int((verdict == worst).argmax())
+        at_worst = verdict == worst
+        margin = np.where(at_worst, _sortable(one), np.inf)
+        place = int(margin.argmin())
+        if not isfinite(margin[place]) and not np.isfinite(margin).any():
+            place = int(at_worst.argmax())
         key = counts, worst, -float(margin[place])
         if best is None or key > best[0]:
             best = key, one, place
@@ -253,7 +262,7 @@ def _point(points: Points, one: ItemPoints, place: int, unit: str) -> GoverningP
     return GoverningPoint(
         place,
         _words(points, place),
-        Verdict(int(results.verdict[place])),
+        _BY_CODE[results.verdict[place]],
         float(results.margin[place]),
         float(results.guarded_margin[place]),
         unit,

@@ -191,9 +191,7 @@ def _items(grid: Grid, names: Sequence[str], governing: Rows) -> list[ItemPoints
             tables=ids,
             **{field: values[i] for field, values in known},
         )
-        items.append(
-            ItemPoints(name, results, tables, effective[i], rank[i], stale[i], marginal[i], grid, i)
-        )
+        items.append(ItemPoints(name, results, tables, effective[i], rank[i], stale[i], marginal[i], grid, i))
     return items
 
 

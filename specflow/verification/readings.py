@@ -13,7 +13,7 @@ from functools import reduce
 import numpy as np
 from numpy.typing import NDArray
 
-from specflow.limits.bounds import Bounds, LimitContext
+from specflow.limits.bounds import ALL_FLAG, NO_FLAG, Bounds, LimitContext
 from specflow.limits.conversion import unit_of
 from specflow.limits.evaluation import evaluate_limit
 from specflow.model.expression import Expression, Negative, Number
@@ -138,10 +138,9 @@ def judge(records: Records, served: Served, judgement: Judgement) -> Readings:
     guard = 0.0 if judgement.rule.name is RuleName.SIMPLE else guard_band(judgement.rule.guard_factor, u)
     verdict, margin = _decided(seen, core, shift, guard, judgement.rule)
     guarded = margin - shift - guard
-    unsure = np.isnan(shift) if isinstance(shift, np.ndarray) else np.zeros((), bool)
-    _overrule(verdict, unsure | lost, inadmissible)
+    _overrule(verdict, np.isnan(shift) | lost if isinstance(shift, np.ndarray) else lost, inadmissible)
     whys = [*why, *_unsure_words(u, judgement, lost)]
-    if not bounds.applies.all() or bounds.unknown.any():
+    if not _everywhere(bounds):
         whys.extend(_outside(bounds, verdict, margin, guarded))
     if why:
         verdict[:] = Verdict.INCONCLUSIVE
@@ -172,7 +171,7 @@ def _core(bounds: Bounds, judgement: Judgement, exact: NDArray[np.bool_] | bool)
             for side in (lower, upper)
             if side is not None
         ]
-        slack = np.maximum.reduce(np.broadcast_arrays(*sizes)) if sizes else 0.0
+        slack = reduce(np.maximum, sizes) if sizes else 0.0
     return AcceptanceInterval(lower, upper, _flag(bounds.lower_strict), _flag(bounds.upper_strict), slack)
 
 
@@ -311,6 +310,13 @@ def _unsure_words(u: Array, judgement: Judgement, lost: NDArray[np.bool_]) -> li
             "the limit states a measurement bandwidth: some readings state none, or are not in dB and of another"
         )
     return words
+
+
+def _everywhere(bounds: Bounds) -> bool:
+    """Whether the limit asks for something known of every reading."""
+    if bounds.applies is ALL_FLAG and bounds.unknown is NO_FLAG:
+        return True
+    return bool(bounds.applies.all() and not bounds.unknown.any())
 
 
 def _outside(bounds: Bounds, verdict: Codes, margin: Array, guarded: Array) -> list[str]:
