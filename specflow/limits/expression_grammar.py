@@ -18,7 +18,7 @@ import re
 from typing import cast
 
 from specflow.limits.expression_shape import expression_depth, is_condition
-from specflow.limits.reader import FUNCTION_NAMES, MAX_DEPTH, RESERVED, Reader, canonical_unit
+from specflow.limits.reader import FUNCTION_NAMES, MAX_DEPTH, RESERVED, SHAPES, Reader, canonical_unit
 from specflow.model.expression import (
     FUNCTIONS,
     Arithmetic,
@@ -287,8 +287,19 @@ def _read_atom(reader: Reader) -> Expression:
                     f"a number or a name belongs here, not {reader.rest!r}", place=start)  # fmt: skip
     if reader.text.startswith("(", start + len(name)):
         reader.fail(f"{name!r} is not a function", hint=f"functions are {', '.join(FUNCTIONS)}", place=start)
+    if name.lower() in SHAPES:
+        example = SHAPES[name.lower()]
+        reader.fail(
+            f"{name!r} begins a limit of several parts, in parentheses",
+            hint=f"as in '{example}'",
+            place=start,
+        )
     if name.lower() in RESERVED:
-        reader.fail(f"{name!r} is a word of the grammar; a number or a name belongs here", place=start)
+        first = "say first what is required, as in '>= 20 dB if frequency > 28 GHz'"
+        hint = first if start == 0 and name.lower() in ("if", "when", "where") else ""
+        reader.fail(
+            f"{name!r} is a word of the grammar; a number or a name belongs here", hint=hint, place=start
+        )
     return read_after_name(reader, name)
 
 

@@ -49,6 +49,14 @@ _GRAMMAR_WORDS = (
 )
 RESERVED = frozenset(_GRAMMAR_WORDS.split())
 
+#: Words that begin a limit of several parts, with one that reads: no value is called like that.
+SHAPES = {
+    "cases": "cases(when frequency < 28 GHz: >= 45 dBm; otherwise: >= 46 dBm)",
+    "looser": "looser(<= -36 dBm; <= -60 dBc)",
+    "mask": "mask(offset[MHz], max dBm, in 1 MHz: 0..5: -5; 5..100: -13)",
+    "stricter": "stricter(<= -36 dBm; <= -60 dBc)",
+}
+
 #: Words that may stand behind a number without being its unit.
 _REMARKS = frozenset({"typ", "typical", "typically", "nom", "nominal"})
 #: What is often written without a blank behind a unit: 20dBmin, 28VDC.
