@@ -82,7 +82,7 @@ def assess(requirement: Requirement, activities: Sequence[Activity], workspace: 
     for activity in activities:
         own = [_bench(requirement, activity, ground, workspace) for ground in grounds]
         items, shown = _items(requirement, own, points.size, units)
-        why = [text for bench in own for text in (*bench.readings.why, *bench.credit.why)]
+        why = [text for bench in own for text in bench.readings.why + bench.credit.why]
         outcomes.append(summarise(activity, requirement.provers, points, items, units[shown], named, why))
         benches = benches or own
     return _assessment(points, members[shown].limit.unit, outcomes, grounds, benches, workspace)
@@ -107,24 +107,29 @@ def _assessment(
     benches: Sequence[Bench],
     workspace: Workspace,
 ) -> Assessment:
-    standing: Counter[Standing] = Counter()
-    for ground in grounds:
-        standing.update(_standing(ground))
     tolerance = difference_unit(unit)
     return Assessment(
         points,
         tolerance,
         tuple(outcomes),
-        dict(standing),
-        tuple(one for bench in benches for one in conflicts(bench, unit, tolerance, workspace.policy)),
+        _standing(grounds[0]) if len(grounds) == 1 else _added([_standing(one) for one in grounds]),
+        tuple([one for bench in benches for one in conflicts(bench, unit, tolerance, workspace.policy)]),
         _mismatches(grounds, workspace),
-        tuple(one for ground in grounds for one in _ambiguous(ground)),
-        tuple(dict.fromkeys([*_holes(grounds), *(note for one in benches for note in _notes(one))])),
+        tuple([one for ground in grounds for one in _ambiguous(ground)]),
+        _remarks(grounds, benches),
     )
 
 
-def _holes(grounds: Sequence[Ground]) -> list[str]:
-    return [remark for ground in grounds for remark in ground.remarks]
+def _added(parts: Sequence[Mapping[Standing, int]]) -> Mapping[Standing, int]:
+    standing: Counter[Standing] = Counter()
+    for part in parts:
+        standing.update(part)
+    return dict(standing)
+
+
+def _remarks(grounds: Sequence[Ground], benches: Sequence[Bench]) -> tuple[str, ...]:
+    holes = [remark for ground in grounds for remark in ground.remarks]
+    return tuple(dict.fromkeys([*holes, *[note for one in benches for note in _notes(one)]]))
 
 
 def _notes(bench: Bench) -> tuple[str, ...]:
@@ -235,16 +240,19 @@ def _mismatches(grounds: Sequence[Ground], workspace: Workspace) -> tuple[Mismat
     served: set[tuple[str, str]] = set()
     for ground in grounds:
         idle = serving_nothing(ground.points, ground.records, ground.matching.record)
-        without = {(mismatch.table, mismatch.column) for mismatch in idle}
         named = {(source.table.id, source.column.name) for source in ground.records.sources}
-        served |= named - without
+        served |= named - {(mismatch.table, mismatch.column) for mismatch in idle} if idle else named
         found += [*ground.records.mismatches, *idle]
-    workspace.served.update(table for table, _ in served)
+    workspace.served.update([table for table, _ in served])
+    if not found:
+        return ()
     return tuple(dict.fromkeys(one for one in found if (one.table, one.column) not in served))
 
 
 def _ambiguous(ground: Ground) -> tuple[RecordRef, ...]:
     rows = ground.matching.ambiguous
-    if ground.records.usable is not None and len(rows):
+    if not len(rows):
+        return ()
+    if ground.records.usable is not None:
         rows = rows[ground.records.usable[rows]]
     return tuple(ground.records.reference(int(row)) for row in rows[:MOST_NAMED])

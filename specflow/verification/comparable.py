@@ -11,6 +11,7 @@ import math
 from collections import deque
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -121,12 +122,13 @@ def fit(
     if want.by_name:
         want = replace(want, quantity=_inherited(want.quantity, column.quantity, parameter))
     found, wanted, unit = column.quantity, want.quantity, want.unit
-    for part in ("statistic", "polarisation"):
-        if _plain(getattr(found, part)) != _plain(getattr(wanted, part)):
-            return _differs(table, column, part, getattr(found, part), getattr(wanted, part))
+    if not _same(found.statistic, wanted.statistic):
+        return _differs(table, column, "statistic", found.statistic, wanted.statistic)
+    if not _same(found.polarisation, wanted.polarisation):
+        return _differs(table, column, "polarisation", found.polarisation, wanted.polarisation)
     try:
-        source, target = unit_of(column.unit or "1"), unit_of(unit or "1")
-        convert = _conversion(source, target, parameter)
+        target = unit_of(unit or "1")
+        convert = _conversion(column.unit or "1", unit or "1", parameter and parameter.log_factor)
     except UnitError as error:
         what = f"recorded in {column.unit or 'no unit'}, the limit is in {unit}: {error.message}"
         return _mismatch(
@@ -135,10 +137,12 @@ def fit(
     moved = _between_planes(table, column, wanted, block, target)
     if isinstance(moved, Mismatch):
         return moved
-    scaled = Shift() if want.any_bandwidth else _between_bandwidths(table, column, wanted, target)
+    scaled = _NO_SHIFT if want.any_bandwidth else _between_bandwidths(table, column, wanted, target)
     if isinstance(scaled, Mismatch):
         return scaled
     notes = () if convert.is_identity else (convert.words,)
+    if moved is scaled is _NO_SHIFT:
+        return Fit(convert, notes=notes)
     return Fit(
         convert,
         moved.least_db + scaled.least_db,
@@ -182,10 +186,13 @@ class Shift:
     notes: tuple[str, ...] = ()
 
 
-def _conversion(source: Unit, target: Unit, parameter: Parameter | None) -> Converter:
+_NO_SHIFT = Shift()
+
+
+@lru_cache(maxsize=4096)
+def _conversion(source: str, target: str, log_factor: int | None) -> Converter:
     """Return the conversion of the bare level: reference bandwidths are dealt with apart."""
-    factor = parameter.log_factor if parameter is not None else None
-    return converter(_bare(source), _bare(target), log_factor=factor)
+    return converter(_bare(unit_of(source)), _bare(unit_of(target)), log_factor=log_factor)
 
 
 def _bare(unit: Unit) -> Unit:
@@ -193,16 +200,21 @@ def _bare(unit: Unit) -> Unit:
     return unit if kind is None else replace(unit, kind=kind, bandwidth_hz=None)
 
 
+@lru_cache(maxsize=4096)
 def _plain(part: str) -> str:
     return part.strip().casefold()
+
+
+def _same(one: str, other: str) -> bool:
+    return one == other or _plain(one) == _plain(other)
 
 
 def _between_planes(
     table: EvidenceTable, column: ValueColumn, wanted: QuantityIdentity, block: Block | None, target: Unit
 ) -> Shift | Mismatch:
     here, there = column.quantity.plane, wanted.plane
-    if _plain(here) == _plain(there):
-        return Shift()
+    if _same(here, there):
+        return _NO_SHIFT
     if not here or not there:
         return _differs(table, column, "plane", here, there)
     path = _path(block, here, there) if block is not None else None
@@ -242,7 +254,7 @@ def _between_bandwidths(
     here = recorded_bandwidth(column)
     there = target.bandwidth_hz or wanted.bandwidth_hz
     if here == there:
-        return Shift()
+        return _NO_SHIFT
     if here is None or there is None:
         return _differs(table, column, "reference bandwidth", _hertz(here), _hertz(there))
     if not scales(target):

@@ -8,7 +8,6 @@ range only readings at one value are compared, and other conditions that both st
 from __future__ import annotations
 
 from collections.abc import Iterator
-from itertools import islice
 from typing import Any
 
 import numpy as np
@@ -35,10 +34,14 @@ _LARGE = 200
 def conflicts(bench: Bench, unit: str, tolerance_unit: str, policy: Policy) -> tuple[Conflict, ...]:
     """Return the conflicts among the readings of one activity, one a point and item: the pair that differs most."""
     allowed = _expanded(bench, unit, policy)
-    groups = (group for group in _suspicious(bench, allowed) if len(group) > 1)
-    found = (_worst_pair(bench, group, allowed) for group in groups)
-    worst = islice((pair for pair in found if pair is not None), MOST_CONFLICTS)
-    return tuple(_conflict(bench, first, second, allowed, tolerance_unit) for first, second in worst)
+    pairs: list[tuple[int, int]] = []
+    for group in _suspicious(bench, allowed):
+        pair = _worst_pair(bench, group, allowed) if len(group) > 1 else None
+        if pair is not None:
+            pairs.append(pair)
+            if len(pairs) == MOST_CONFLICTS:
+                break
+    return tuple([_conflict(bench, first, second, allowed, tolerance_unit) for first, second in pairs])
 
 
 def _expanded(bench: Bench, unit: str, policy: Policy) -> Floats:
@@ -64,7 +67,9 @@ def _suspicious(bench: Bench, allowed: Floats) -> Iterator[NDArray[np.intp]]:
     cells = len(records.items) * bench.points.size
     cell, cells = at_one_value(bench, cell, None, cells)
     half = allowed * _HALF
-    lowest, highest = np.full(cells, np.inf), np.full(cells, -np.inf)
+    lowest, highest = np.empty(cells), np.empty(cells)
+    lowest.fill(np.inf)
+    highest.fill(-np.inf)
     np.minimum.at(lowest, cell, readings.low + half)
     np.maximum.at(highest, cell, readings.high - half)
     doubtful = highest > lowest

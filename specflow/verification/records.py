@@ -153,6 +153,8 @@ def _lost(part: Held, values: ValueArrays) -> Sequence[Mismatch]:
 def _stacked(
     held: Sequence[tuple[Held, ValueArrays]], conditions: Columns, mismatches: Sequence[Mismatch]
 ) -> Records:
+    if len(held) == 1:
+        return _of_one(*held[0], conditions, mismatches)
     parts = [part for part, _ in held]
     arrays = [values for _, values in held]
     low = _joined([one.low for one in arrays])
@@ -181,6 +183,30 @@ def _stacked(
     )
 
 
+def _of_one(part: Held, values: ValueArrays, conditions: Columns, mismatches: Sequence[Mismatch]) -> Records:
+    """Return the records of one source, as those of most quantities are: nothing to stack."""
+    low, standing = values.low, part.standing
+    return Records(
+        low,
+        values.high,
+        values.u,
+        conditions,
+        part.item_codes,
+        part.items,
+        _zeros(len(low)),
+        (part.source,),
+        _counted(len(low)),
+        standing.codes,
+        standing.all_accepted,
+        _usable(low, standing.codes, standing.all_accepted),
+        part.fit.exact,
+        tuple(dict.fromkeys(part.fit.notes)) if part.fit.notes else (),
+        tuple(dict.fromkeys(standing.reasons)) if standing.reasons else (),
+        tuple(mismatches),
+        standing.replaced,
+    )
+
+
 def _replacements(parts: Sequence[Held]) -> tuple[Replacement, ...]:
     """Return what was replaced by name, in rows of the whole instead of rows of a table."""
     if not any(part.standing.replaced for part in parts):
@@ -197,7 +223,7 @@ def _replacements(parts: Sequence[Held]) -> tuple[Replacement, ...]:
 
 
 def _joined(parts: Sequence[NDArray[T]]) -> NDArray[T]:
-    return parts[0] if len(parts) == 1 else np.concatenate(parts)
+    return np.concatenate(parts)
 
 
 def _uncertainties(arrays: Sequence[ValueArrays]) -> Floats | None:
@@ -214,7 +240,7 @@ def _usable(low: Floats, standing: NDArray[np.int8], accepted: bool) -> NDArray[
 
 
 def _exact(parts: Sequence[Held], arrays: Sequence[ValueArrays]) -> NDArray[np.bool_] | bool:
-    if len(parts) == 1 or len({part.fit.exact for part in parts}) == 1:
+    if len({part.fit.exact for part in parts}) == 1:
         return parts[0].fit.exact
     return np.concatenate(
         [np.full(len(one.low), part.fit.exact) for part, one in zip(parts, arrays, strict=True)]
@@ -222,8 +248,6 @@ def _exact(parts: Sequence[Held], arrays: Sequence[ValueArrays]) -> NDArray[np.b
 
 
 def _items(parts: Sequence[Held]) -> tuple[NDArray[np.intp], tuple[str, ...]]:
-    if len(parts) == 1:
-        return parts[0].item_codes, parts[0].items
     names: dict[str, tuple[int, str]] = {}
     codes = []
     for part in parts:
@@ -233,8 +257,6 @@ def _items(parts: Sequence[Held]) -> tuple[NDArray[np.intp], tuple[str, ...]]:
 
 
 def _numbered(sizes: Sequence[int]) -> Rows:
-    if len(sizes) == 1:
-        return _zeros(sizes[0])
     return np.repeat(np.arange(len(sizes), dtype=np.int32), sizes)
 
 
