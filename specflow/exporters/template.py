@@ -14,7 +14,9 @@ from textwrap import wrap
 from typing import TYPE_CHECKING, Any
 
 from specflow.errors import FileError
+from specflow.exporters.guide import LIMITS_HEAD, PARAMETERS_HEAD, limit_pairs, parameter_pairs
 from specflow.model.sheet import GUIDE, SheetColumn, SheetLayout
+from specflow.parameters import load_dictionary
 
 if TYPE_CHECKING:
     from xlsxwriter import Workbook
@@ -31,7 +33,8 @@ _LEADING = (
     "Sheets and columns are found by their names, in any order. Rows above the headers are not read, and columns that "
     "are not known are reported and left out. Columns you do not need may be deleted.",
     "Rows marked 'example' in the first column are not loaded. Empty the mark to load them, or delete the rows.",
-    "A limit is written as you would write it, with its unit. It is said back in words when the workbook is loaded.",
+    "A limit is written as you would write it, with its unit. It is said back in words when the workbook is loaded. "
+    "Spellings of limits, masks among them, and the parameters that are known stand below.",
     "Write dates as 2026-03-31. Do not merge cells and do not hide rows: both are refused with their address.",
     "Status that is computed from this workbook is engineering evidence, not a certificate.",
 )
@@ -87,6 +90,7 @@ def _formats(book: Workbook) -> dict[str, Any]:
         "cell": book.add_format({**top, "num_format": "@"}),
         "example": book.add_format({**top, "num_format": "@", "italic": True, "font_color": "#777777"}),
         "name": book.add_format({"bold": True, "valign": "top"}),
+        "word": book.add_format({**top, "num_format": "@"}),
     }
 
 
@@ -110,6 +114,26 @@ def _write_guide(sheet: Worksheet, layouts: Sequence[SheetLayout], formats: dict
         sheet.set_row(row, _height([(text, _TEXT_WIDTH)]))
         sheet.write_url(row, 0, f"internal:'{layout.title}'!A1", formats["name"], layout.title)
         sheet.write_string(row, 1, text, formats["text"])
+    dictionary = load_dictionary()
+    row = _write_pairs(sheet, row + 2, LIMITS_HEAD, limit_pairs(dictionary), formats)
+    _write_pairs(sheet, row + 1, PARAMETERS_HEAD, parameter_pairs(dictionary), formats)
+
+
+def _write_pairs(
+    sheet: Worksheet,
+    row: int,
+    head: tuple[str, str],
+    pairs: Sequence[tuple[str, str]],
+    formats: dict[str, Any],
+) -> int:
+    """Write a head and its pairs from a row on; return the row below."""
+    for place, text in enumerate(head):
+        sheet.write_string(row, place, text, formats["header"])
+    for below, (name, text) in enumerate(pairs, start=row + 1):
+        sheet.set_row(below, _height([(name, _NAME_WIDTH), (text, _TEXT_WIDTH)]))
+        sheet.write_string(below, 0, name, formats["word"])
+        sheet.write_string(below, 1, text, formats["text"])
+    return row + len(pairs) + 1
 
 
 def _write_sheet(sheet: Worksheet, layout: SheetLayout, formats: dict[str, Any]) -> None:
@@ -167,5 +191,5 @@ def _height(cells: Sequence[tuple[str, int]], line: int = 15) -> int:
 
     ``cells`` are texts with the width of their column, in characters.
     """
-    lines = max(len(wrap(text, max(width, 4))) for text, width in cells)
+    lines = max(sum(len(wrap(line, max(width, 4))) for line in text.split("\n")) for text, width in cells)
     return line * max(lines, 1) + 3

@@ -35,6 +35,11 @@ _STATISTIC_WORDS = {
     "std": "standard deviation",
 }
 
+_WHERE_LISTED = (
+    "the template of 'specflow init' lists the dictionary on its first sheet; "
+    "or add a parameter to the project, on the sheet Parameters"
+)
+
 
 @dataclass(frozen=True, slots=True)
 class Candidate:
@@ -103,7 +108,7 @@ class Dictionary:
             keys = ", ".join(one.parameter.key for one in found)
             raise ParameterError(f"{text!r} may be any of {keys}", hint="write the one that is meant")
         near = ", ".join(parameter.key for parameter in self.suggest(text))
-        hint = f"did you mean {near}?" if near else "see the dictionary, or add a parameter to the project"
+        hint = f"did you mean {near}?" if near else _WHERE_LISTED
         raise ParameterError(f"{text!r} is no known parameter", hint=hint)
 
     def suggest(self, text: str, *, most: int = 3) -> list[Parameter]:

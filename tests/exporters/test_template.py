@@ -10,13 +10,15 @@ from openpyxl import load_workbook
 from openpyxl.worksheet.worksheet import Worksheet
 
 from specflow.errors import FileError
+from specflow.exporters.limit_spellings import LIMIT_SPELLINGS, LimitSpelling
 from specflow.exporters.template import template_bytes, write_template
 from specflow.importers.sheets import SHEETS
 from specflow.importers.workbook import read_workbook
+from specflow.model.finding import Severity
 from specflow.model.nouns import NOUN_BY_DOCUMENT
 from specflow.model.sheet import EXAMPLE, GUIDE, SheetLayout
 from specflow.parameters import load_dictionary
-from tests.builders import a_snapshot
+from tests.builders import a_block, a_declared_value, a_snapshot, read_sheets
 
 LAYOUTS = [sheet.layout for sheet in SHEETS]
 
@@ -35,6 +37,36 @@ def sheets_of(path: Path) -> Iterator[tuple[SheetLayout, Worksheet]]:
 
 def test_there_is_a_guide_and_one_sheet_a_noun(template: Path) -> None:
     assert load_workbook(template).sheetnames == [GUIDE, *(layout.title for layout in LAYOUTS)]
+
+
+def guide_of(path: Path) -> dict[str, str]:
+    """The guide's second column by its first; a cell without a name in front counts by its own text."""
+    rows = load_workbook(path)[GUIDE].iter_rows(values_only=True)
+    return {str(name or text): str(text) for name, text, *_ in rows if text}
+
+
+@pytest.mark.parametrize("spelling", LIMIT_SPELLINGS, ids=lambda spelling: spelling.text)
+def test_every_spelling_of_a_limit_in_the_guide_loads_and_is_said_back_as_the_guide_says(
+    template: Path, tmp_path: Path, spelling: LimitSpelling
+) -> None:
+    row = {"ID": "R-1", "Block": "UT", "Parameter": spelling.parameter, "Limit": spelling.text}
+    draft = read_sheets(
+        tmp_path,
+        a_snapshot(a_block("UT"), a_declared_value("P_rated")),
+        requirements=[row],
+    )
+    assert not [one for one in draft.findings if one.severity is Severity.ERROR]
+    said = [text for text in guide_of(template).values() if text.startswith(f"{spelling.text}\n")]
+    assert said == [f"{spelling.text}\n{draft.echoes['R-1']}"]
+
+
+def test_the_guide_lists_every_parameter_with_its_unit_and_other_names(template: Path) -> None:
+    guide = guide_of(template)
+    for parameter in load_dictionary().by_key.values():
+        assert parameter.title in guide[parameter.key]
+        assert all(alias in guide[parameter.key] for alias in parameter.aliases)
+    assert guide["vswr"].startswith("VSWR (plain number)")
+    assert guide["eirp"].startswith("EIRP (dBm)")
 
 
 def test_every_sheet_has_guidance_headers_and_a_marked_example_row(template: Path) -> None:
