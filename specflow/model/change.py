@@ -35,5 +35,7 @@ class Change(Document):
     def sentence(self) -> str:
         """Say the change in one line."""
         verb = {"add": "added", "edit": "changed", "remove": "removed"}[self.action]
-        details = "; ".join(change.meaning or f"{change.field}: {change.before} → {change.after}" for change in self.fields)
+        details = "; ".join(
+            change.meaning or f"{change.field}: {change.before} → {change.after}" for change in self.fields
+        )
         return f"{self.noun} {self.id} {verb}" + (f": {details}" if details else "")

@@ -87,7 +87,8 @@ class Approval(Document):
 class DeclaredSplit(Document):
     """A known shortfall on part of the scope, declared: what makes a requirement partially compliant.
 
-    ``scope_not_met`` is a condition (``frequency >= 29 GHz``, ``item == LNA-2``): what fails outside it is not declared.
+    ``scope_not_met`` is a condition (``frequency >= 29 GHz``, ``item == LNA-2``): what fails outside it is not
+    declared.
     """
 
     id: Code
