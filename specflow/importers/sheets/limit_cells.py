@@ -50,7 +50,23 @@ def limit_cell(
     _check_kind(row, column, limit, parameter)
     if named is not None:
         _check_unit_column(row, column, limit, named)
-    return limit
+    return _with_unit_in_text(limit, hint, parameter)
+
+
+def _with_unit_in_text(limit: Limit, hint: str, parameter: Parameter) -> Limit:
+    """The limit with the unit of its column in its text, where that reads the same: "1.2" alone says nothing."""
+    if not hint or parse_unit(hint) == ONE or _is_read(limit.text, parameter.model_copy(update={"unit": ""})):
+        return limit
+    text = f"{limit.text} {hint}"
+    return limit.model_copy(update={"text": text}) if _is_read(text, parameter, like=limit) else limit
+
+
+def _is_read(text: str, parameter: Parameter, *, like: Limit | None = None) -> bool:
+    try:
+        limit = parse_limit(text, parameter=parameter)
+    except ExpressionError:
+        return False
+    return like is None or limit.tree == like.tree
 
 
 def _check_grammar(row: SheetRow, column: str, text: str, hint: str) -> None:
@@ -85,10 +101,7 @@ def _lacks_unit(
             unit = units.get(name, parameter.unit)
             named = f"{name}[{'plain' if unit in ('', '1') else unit}]"
             text = re.sub(rf"\b{re.escape(name)}\b(?!\[)", named, text)
-    silent = parameter.model_copy(update={"unit": ""})
-    try:
-        parse_limit(text, parameter=silent)
-    except ExpressionError:
+    if not _is_read(text, parameter.model_copy(update={"unit": ""})):
         row.fault(
             column,
             f"the limit {limit.text!r} has no unit",

@@ -52,6 +52,29 @@ def test_a_limit_in_another_unit_than_the_unit_column_says_is_refused(
     assert finding.origin is not None and finding.origin.cell == where
 
 
+@pytest.mark.parametrize(
+    ("cells", "text"),
+    [
+        ({"Limit": ">= 45,5", "Unit": "dBm"}, ">= 45,5 dBm"),
+        ({"Limit": None, "Min": 21, "Max": "24,5", "Unit": "dBm"}, "21 to 24,5 dBm"),
+        ({"Limit": ">= 45 dBm", "Unit": "dBm"}, ">= 45 dBm"),
+        ({"Limit": "20 dBm +1.5/-2", "Unit": "dBm"}, "20 dBm +1.5/-2"),
+        ({"Limit": "TBD", "Unit": "dBm"}, "TBD"),
+        ({"Limit": ">= P_rated - 3 dB", "Unit": "dBm"}, ">= P_rated - 3 dB"),
+        (
+            {"Limit": "by band (n257: >= 22; n260: >= 20)", "Unit": "dBm"},
+            "by band (n257: >= 22; n260: >= 20)",
+        ),
+    ],
+)
+def test_the_text_of_a_bare_number_is_shown_with_the_unit_of_its_column(
+    tmp_path: Path, cells: dict[str, Any], text: str
+) -> None:
+    draft = load(tmp_path, **cells)
+    (found,) = [one for one in draft.documents if isinstance(one, Requirement)]
+    assert found.limit.text == text
+
+
 def test_a_unit_that_is_written_twice_the_same_is_no_conflict(tmp_path: Path) -> None:
     assert requirement(tmp_path, Limit=">= 45 dBm", Unit="dBm").limit.unit == "dBm"
     assert requirement(tmp_path, Limit="20 dBm +2/-3 dB", Unit=" dBm ").limit.unit == "dBm"
