@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 
 from specflow.conditions.dimensions import known_dimension
 from specflow.conditions.points import Points
@@ -69,10 +70,15 @@ def dimension_words(dimension: Dimension) -> str:
     if dimension.span is not None:
         what = range_words(name, dimension.span.low, dimension.span.high, dimension.unit)
     else:
-        *others, last = dimension.values
-        first = [_signed(name, value, dimension.unit, quantity_words(name, value, "")) for value in others]
-        what = _phrased(name, ", ".join([*first, quantity_words(name, last, dimension.unit)]))
+        what = _values_words(dimension, dimension.values)
     return what + _setting_words(dimension) + excused
+
+
+def _values_words(dimension: Dimension, values: Sequence[float]) -> str:
+    name, unit = dimension.name, dimension.unit
+    *others, last = values
+    first = [_signed(name, value, unit, quantity_words(name, value, "")) for value in others]
+    return _phrased(name, ", ".join([*first, quantity_words(name, last, unit)]))
 
 
 def set_words(conditions: ConditionsSet) -> str:
@@ -109,7 +115,19 @@ def exclusion_words(exclusion: Exclusion) -> str:
 def _combination_words(conditions: ConditionsSet) -> str:
     if conditions.combination is Combination.LISTED and conditions.listed:
         return f"{conditions.combination.value} of {' and '.join(conditions.listed)}, with all others"
+    if conditions.combination is Combination.CORNERS:
+        between = [words for one in conditions.dimensions if (words := _between_corners(one))]
+        skipped = f"; no point at {' nor at '.join(between)}" if between else ""
+        return f"corners: lowest and highest of each{skipped}"
     return conditions.combination.value
+
+
+def _between_corners(dimension: Dimension) -> str:
+    """Say the listed values that corners pass over, "" where there is none."""
+    inner = [value for value in dimension.values if min(dimension.values) < value < max(dimension.values)]
+    if dimension.need is not Need.REQUIRED or not inner:
+        return ""
+    return _values_words(dimension, inner)
 
 
 def _setting_words(dimension: Dimension) -> str:

@@ -297,6 +297,15 @@ def test_a_row_with_an_id_only_is_one_finding(tmp_path: Path) -> None:
     assert "only the column ID" in finding.message
 
 
+def test_a_note_below_the_blocks_is_one_finding_and_a_lone_id_is_a_block(tmp_path: Path) -> None:
+    rows = [{"ID": "UT", "Parent": None}, {"ID": "TX", "Parent": "UT"}, {"Parent": "Note: per hop end."}]
+    draft = read_sheets(tmp_path, blocks=rows)
+    (finding,) = rejected(draft)
+    assert finding.message == "only the column Parent of this row is filled in"
+    assert "a heading or a note" in finding.remedy
+    assert [one.id for one in draft.documents] == ["UT", "TX"]  # type: ignore[attr-defined]
+
+
 def test_a_workbook_with_headers_only_says_that_nothing_was_found(tmp_path: Path) -> None:
     path = project_workbook(tmp_path / "a.xlsx", requirements=[REQUIREMENT])
     draft = read(edited(path, "Requirements", lambda sheet: sheet.delete_rows(2)))

@@ -198,6 +198,14 @@ def _dimension(row: SheetRow, corners: bool, notes: list[str]) -> Dimension | No
     found = row.attempt("required", lambda: read_dimension(name, values, **cells, corners=corners))
     if found is None:
         return None
+    span = found.dimension.span
+    if corners and span is not None and span.step is not None:
+        row.fault(
+            "required",
+            f"corners use the ends of the range of {found.dimension.name} only, but it states a step",
+            "drop the step, or combine as all combinations",
+        )
+        return None
     notes.extend(found.notes)
     return found.dimension
 
@@ -243,7 +251,7 @@ def _parts(row: SheetRow, column: str, count: int) -> list[str]:
     if len(parts) != count:
         row.fault(
             column,
-            f"{count} dimensions and {len(parts)} parts",
+            f"{row.layout.column(column).title} has {len(parts)} part{'s' * (len(parts) != 1)} for {count} dimensions",
             "write one part a dimension, separated by ';'",
         )
         return [""] * count

@@ -140,16 +140,22 @@ def _report_hidden(rows: Sequence[SheetRow], grid: Grid) -> None:
 
 
 def _spoil_headings(rows: Sequence[SheetRow]) -> None:
-    """A row of which one cell is filled gets one finding, not one for each cell that is missing."""
+    """A row of which one cell is filled gets one finding, not one for each cell that is missing.
+
+    Where few columns are needed, that cell may be the row (a block has nothing but its id): then only another cell
+    that stands alone is a heading or a note.
+    """
     for row in rows:
         filled = [
             key for key, place in row.columns.items() if not is_blank(row.grid.value(row.number, place))
         ]
-        if len(filled) == 1 and len(row.layout.required) > 2 and filled[0] != MARK:
+        needed = {column.key for column in row.layout.required}
+        lone = len(filled) == 1 and filled[0] != MARK
+        if lone and (len(needed) > 2 or filled[0] not in needed):
             row.fault(
                 filled[0],
                 f"only the column {row.layout.column(filled[0]).title} of this row is filled in",
-                "fill in the row; if it is a heading, delete it, or move it above the header row",
+                "fill in the row; if it is a heading or a note, delete it, or move it above the header row",
             )
             row.spoiled.update(column.key for column in row.layout.columns)
 

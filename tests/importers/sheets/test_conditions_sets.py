@@ -178,3 +178,40 @@ def test_a_set_given_on_two_sheets_is_refused(tmp_path: Path) -> None:
     draft = read_sheets(tmp_path, conditions=[FREQUENCY], condition_sets=[TEMPERATURE])
     (finding,) = [one for one in draft.findings if one.severity is Severity.ERROR]
     assert "given already in Conditions A2" in finding.message
+
+
+def test_corners_say_which_listed_values_they_pass_over(tmp_path: Path) -> None:
+    rows = [
+        FREQUENCY | {"Combination": "corners", "Required": "71, 76, 81, 86 GHz"},
+        TEMPERATURE | {"Required": "-33, 23, 55 °C"},
+    ]
+    words = read_sheets(tmp_path, conditions=rows).echoes["CS-1"]
+    assert words.startswith("4 required points: ")
+    assert words.endswith(
+        "(corners: lowest and highest of each; no point at 76, 81 GHz nor at +23 °C ambient)"
+    )
+
+
+def test_corners_of_two_values_each_pass_over_nothing(tmp_path: Path) -> None:
+    rows = [FREQUENCY | {"Combination": "corners", "Required": "27.5 to 30 GHz"}, TEMPERATURE]
+    assert (
+        read_sheets(tmp_path, conditions=rows)
+        .echoes["CS-1"]
+        .endswith("(corners: lowest and highest of each)")
+    )
+
+
+def test_a_step_in_corners_is_refused_at_its_own_cell(tmp_path: Path) -> None:
+    stepped = TEMPERATURE | {"Required": "-30 to 55 °C step 5 K"}
+    finding = rejected(tmp_path, [FREQUENCY | {"Combination": "corners"}, stepped])
+    assert finding.message == (
+        "corners use the ends of the range of temperature_ambient only, but it states a step"
+    )
+    assert finding.remedy == "drop the step, or combine as all combinations"
+    assert finding.origin is not None and finding.origin.cell == "C3"
+
+
+def test_parts_that_do_not_go_with_the_dimensions_name_their_column(tmp_path: Path) -> None:
+    row = {"ID": "CS-1", "Dimension": "frequency; bandwidth", "Required": "28 GHz; 250 MHz"}
+    finding = rejected(tmp_path, [row | {"Setting tolerance": "1 MHz"}])
+    assert finding.message == "Setting tolerance has 1 part for 2 dimensions"
