@@ -20,6 +20,7 @@ from specflow.model.columns import Columns
 
 Rows = NDArray[np.int32]
 _NONE = np.zeros(0, np.int32)
+_SHORT = np.iinfo(np.int16).max
 
 
 @dataclass(frozen=True, slots=True)
@@ -81,8 +82,8 @@ def _by_key(
     points: Points, seen: list[Floats], size: int
 ) -> tuple[NDArray[np.intp], NDArray[np.int32], NDArray[np.intp]]:
     keys, crowded = _keys(points, seen, size)
-    record = np.flatnonzero(keys >= 0)
-    point = points.at_keys(keys[record])
+    record = (keys >= 0).nonzero()[0]
+    point = points.at_keys(keys.take(record))
     if not points.is_full:
         served = point >= 0
         record, point = record[served], point[served]
@@ -136,8 +137,10 @@ def _sorted(
 ) -> Matching:
     axis = points.range_axis
     if axis is None:
-        order = np.argsort(point, kind="stable")
-        return Matching(record[order].astype(np.int32), point[order], None, ambiguous, notes)
+        # numpy sorts numbers of 16 bits by their digits, which takes a third of the time
+        short = point.astype(np.int16) if points.size <= _SHORT else point
+        order = short.argsort(kind="stable")
+        return Matching(record.take(order).astype(np.int32), point.take(order), None, ambiguous, notes)
     place = points.axes.index(axis)
     along = axis.along(seen[place][record], points.codes[place][point])
     order = np.lexsort((along, point))
@@ -147,7 +150,8 @@ def _sorted(
 def _notes(points: Points, records: Columns) -> tuple[str, ...]:
     units = points.columns_lo.units
     recorded = records.units
-    if all(recorded.get(name, "") == unit for name, unit in units.items()):
+    different = [name for name, unit in units.items() if recorded.get(name, "") != unit]
+    if not different:
         return ()
     notes = (recording_note(records, name, unit) for name, unit in units.items())
     return tuple(note for note in notes if note)

@@ -5,8 +5,8 @@ from __future__ import annotations
 import hashlib
 import json
 from collections.abc import Iterable, Iterator
-from dataclasses import dataclass
-from typing import Any
+from functools import lru_cache
+from typing import Any, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -17,10 +17,10 @@ from specflow.model.evidence import EvidenceColumns, EvidenceTable, ValueArrays
 
 FLOAT = "<f8"
 INTEGER = "<i4"
+_DTYPES = {name: np.dtype(name) for name in (FLOAT, INTEGER)}
 
 
-@dataclass(frozen=True, slots=True)
-class PackedColumn:
+class PackedColumn(NamedTuple):
     """One column of one evidence table as it is stored; ``data`` are ``rows`` entries of ``dtype``."""
 
     role: str
@@ -59,7 +59,7 @@ def unpack(code: str, packed: Iterable[PackedColumn]) -> EvidenceColumns:
     for column in packed:
         entries = _entries(code, column)
         if column.labels is not None:
-            text[column.role][column.name] = TextColumn(entries, tuple(json.loads(column.labels)))
+            text[column.role][column.name] = TextColumn(entries, _labels(column.labels))
         elif column.role == "source_row":
             source_rows = entries
         elif column.role == "condition":
@@ -142,5 +142,11 @@ def _entries(code: str, column: PackedColumn) -> NDArray[Any]:
             where=f"evidence table {code}",
             hint="go back to a backup, or withdraw the table and attach its file again",
         )
-    entries: NDArray[Any] = np.frombuffer(column.data, column.dtype)
+    entries: NDArray[Any] = np.frombuffer(column.data, _DTYPES.get(column.dtype, column.dtype))
     return entries
+
+
+@lru_cache(maxsize=1024)
+def _labels(text: str) -> tuple[str, ...]:
+    """Return the words of a column; tables of one kind have the same."""
+    return tuple(json.loads(text))

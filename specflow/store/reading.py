@@ -92,8 +92,8 @@ class _ColumnsLoader:
         packed: dict[int, list[PackedColumn]] = defaultdict(list)
         with translated(self.place.name), self.place.reading() as run:
             for keys in _portions(list(wanted.values())):
-                for pk, *column in run(_COLUMNS.format(keys=",".join(map(str, keys)))):
-                    packed[pk].append(PackedColumn(*column))
+                for row in run(_COLUMNS.format(keys=",".join(map(str, keys)))):
+                    packed[row[0]].append(PackedColumn._make(row[1:]))
         return {table: unpack(table, packed[pk]) for table, pk in wanted.items()}
 
 

@@ -272,4 +272,4 @@ def _write_attachments(connection: Connection, batch: Batch, keys: Mapping[Key, 
 
 
 def _column_values(column: PackedColumn) -> dict[str, Any]:
-    return {name: getattr(column, name) for name in PackedColumn.__slots__}
+    return column._asdict()
