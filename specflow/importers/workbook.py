@@ -77,7 +77,7 @@ def _recognised(file: GridFile, findings: list[Finding]) -> list[Found]:
         named, others = _by_headers(others, findings)
     if not named:
         raise _nothing_known(file)
-    findings.extend(_not_read(grid) for grid in others)
+    findings.extend(_not_read(grid, {sheet.layout.noun for sheet, _ in named}) for grid in others)
     return sorted(
         named, key=lambda found: (_READING_ORDER.index(found[0].layout.noun), SHEETS.index(found[0]))
     )
@@ -88,24 +88,28 @@ def _by_headers(grids: Sequence[Grid], findings: list[Finding]) -> tuple[list[Fo
     named: list[Found] = []
     others: list[Grid] = []
     for grid in grids:
-        fits = [
-            (len(header.columns), sheet) for sheet in SHEETS if (header := find_header(grid, sheet.layout))
-        ]
-        most = max((count for count, _ in fits), default=0)
-        best = [sheet for count, sheet in fits if count == most]
-        if most < 3 or len(best) != 1:
+        best = _like(grid)
+        if best is None:
             others.append(grid)
             continue
-        named.append((best[0], grid))
+        named.append((best, grid))
         findings.append(
             _about(
                 grid,
-                f"read as the sheet {best[0].layout.title}, judged by its headers",
-                f"call it {best[0].layout.title} to leave no doubt",
+                f"read as the sheet {best.layout.title}, judged by its headers",
+                f"call it {best.layout.title} to leave no doubt",
                 "workbook-sheet-by-headers",
             )
         )
     return named, others
+
+
+def _like(grid: Grid) -> Sheet | None:
+    """The sheet kind whose headers these are, better than those of any other; None where that is in doubt."""
+    fits = [(len(header.columns), sheet) for sheet in SHEETS if (header := find_header(grid, sheet.layout))]
+    most = max((count for count, _ in fits), default=0)
+    best = [sheet for count, sheet in fits if count == most]
+    return best[0] if most >= 3 and len(best) == 1 else None
 
 
 def _tables(
@@ -173,7 +177,18 @@ def _nothing_known(file: GridFile) -> FileError:
     )
 
 
-def _not_read(grid: Grid) -> Finding:
+def _not_read(grid: Grid, read: set[str]) -> Finding:
+    """A sheet that is left aside; a warning where it looks like the one sheet of its kind."""
+    like = _like(grid)
+    if like is not None:
+        title = like.layout.title
+        return _about(
+            grid,
+            f"the sheet {grid.name} is not known by its name and was not read, but its headers are those of {title}",
+            f"call it {title} if it should be read",
+            "workbook-unknown-sheet",
+            Severity.INFO if like.layout.noun in read else Severity.WARNING,
+        )
     names = ", ".join(sheet.layout.title for sheet in SHEETS)
     return _about(
         grid,

@@ -14,6 +14,7 @@ from specflow.errors import FileError
 from specflow.importers.workbook import read_workbook
 from specflow.model.block import Block, HardwareType
 from specflow.model.conditions import ConditionsSet
+from specflow.model.declared import UncertaintyEntry
 from specflow.model.draft import Draft
 from specflow.model.finding import Severity
 from specflow.model.requirement import Activity, Method, Requirement, Stage
@@ -239,6 +240,52 @@ def test_a_single_sheet_of_another_name_is_judged_by_its_headers(tmp_path: Path)
 def test_unknown_sheets_beside_known_ones_are_reported(tmp_path: Path) -> None:
     draft = read_sheets(tmp_path, blocks=BLOCKS, history=[{"Who": "somebody", "What": "something"}])
     assert [(one.severity, one.rule) for one in draft.findings] == [(Severity.INFO, "workbook-unknown-sheet")]
+
+
+@pytest.mark.parametrize(("kept", "severity"), [((), Severity.WARNING), (("R-2",), Severity.INFO)])
+def test_a_sheet_of_another_name_with_the_headers_of_requirements_is_pointed_out(
+    tmp_path: Path, kept: tuple[str, ...], severity: Severity
+) -> None:
+    sheets: dict[str, Any] = {"requirements": [REQUIREMENT | {"ID": code} for code in kept]} if kept else {}
+    draft = read_sheets(tmp_path, blocks=BLOCKS, spec_limits=[REQUIREMENT], **sheets)
+    (finding,) = draft.findings
+    assert (finding.rule, finding.severity) == ("workbook-unknown-sheet", severity)
+    assert "its headers are those of Requirements" in finding.message
+    assert finding.remedy == "call it Requirements if it should be read"
+
+
+def test_an_unknown_column_names_the_headers_that_it_may_mean(tmp_path: Path) -> None:
+    line = {"ID": "D-1", "Name": "P_rated", "Value": "38 dBm", "Aplies to": "M", "Colour": "red"}
+    near, far = (one.remedy for one in read_sheets(tmp_path, declared_values=[line]).findings)
+    assert near.endswith("; nearest: Applies to")
+    assert far.endswith("; this sheet has none of: Unit, Declared on, Declared by, Applies to, Note")
+
+
+def test_headers_of_other_houses_are_read(tmp_path: Path) -> None:
+    draft = read_sheets(
+        tmp_path,
+        blocks=[{"ID": "UT", "Designation": "Terminal", "Responsible": "SYS"}],
+        requirements=[REQUIREMENT | {"Parameter": "spurious_emission", "Measurement BW": "1 MHz"}],
+        activities=[{"Requirement": "R-1", "Method": "test", "Phase": "acceptance"}],
+        uncertainty=[
+            {
+                "ID": "U",
+                "Set-up": "A",
+                "Parameter": "eirp",
+                "U": "1 dB",
+                "k": 2,
+                "From": "27 GHz",
+                "To": "30 GHz",
+            }
+        ],
+    )
+    assert not draft.findings
+    block, requirement = found(draft, Block)["UT"], found(draft, Requirement)["R-1"]
+    assert (block.name, block.owner) == ("Terminal", "SYS")
+    assert requirement.quantity.bandwidth_hz == 1e6
+    assert found(draft, Activity)["R-1/A1"].stage is Stage.ACCEPTANCE
+    line = found(draft, UncertaintyEntry)["U"]
+    assert (line.frequency_from_hz, line.frequency_to_hz) == (27e9, 30e9)
 
 
 def test_a_file_without_any_known_sheet_is_refused_with_the_names_looked_for(tmp_path: Path) -> None:

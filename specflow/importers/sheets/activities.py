@@ -46,7 +46,7 @@ LAYOUT = SheetLayout(
         SheetColumn(
             key="stage",
             title="Stage",
-            aliases=("Verification stage",),
+            aliases=("Verification stage", "Phase"),
             guidance="Empty: qualification.",
             choices=tuple(Stage),
             example="qualification",

@@ -38,7 +38,7 @@ LAYOUT = SheetLayout(
         SheetColumn(
             key="name",
             title="Name",
-            aliases=("Block name", "Title", "Description"),
+            aliases=("Block name", "Title", "Description", "Designation"),
             guidance="What people call it. Empty: the id.",
             example="Transmit power amplifier",
             width=28,
@@ -92,7 +92,13 @@ LAYOUT = SheetLayout(
             example="PA input -> PA output: 24 dB, u 0.15 dB",
             width=34,
         ),
-        SheetColumn(key="owner", title="Owner", guidance="Who answers for it.", example="RF team"),
+        SheetColumn(
+            key="owner",
+            title="Owner",
+            aliases=("Responsible",),
+            guidance="Who answers for it.",
+            example="RF team",
+        ),
         SheetColumn(
             key="maturity",
             title="Maturity",

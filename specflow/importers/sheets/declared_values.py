@@ -67,7 +67,7 @@ LAYOUT = SheetLayout(
             guidance="The variant or block that it holds for. Empty: all.",
             example="",
         ),
-        SheetColumn(key="note", title="Note", aliases=("Notes", "Remarks", "Comment"), width=28),
+        SheetColumn(key="note", title="Note", aliases=("Notes", "Remarks", "Comment", "Meaning"), width=28),
     ),
 )
 

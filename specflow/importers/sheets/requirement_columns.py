@@ -120,7 +120,7 @@ _WHAT = (
     SheetColumn(
         key="bandwidth",
         title="Reference bandwidth",
-        aliases=("Ref. bandwidth", "Reference BW", "Measurement bandwidth", "RBW"),
+        aliases=("Ref. bandwidth", "Reference BW", "Measurement bandwidth", "Measurement BW", "RBW"),
         field="quantity.bandwidth_hz",
         guidance="With unit: 1 MHz. Empty: taken from a unit such as dBm/MHz.",
         width=14,

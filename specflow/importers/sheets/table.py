@@ -13,6 +13,7 @@ from specflow.model.origin import Origin
 from specflow.model.sheet import EXAMPLE, SheetColumn, SheetLayout, header_key
 
 MARK = "mark"
+_FEW_HEADERS = 15
 
 
 def missing_header(grid: Grid, layout: SheetLayout, sha256: str) -> Finding:
@@ -83,7 +84,7 @@ def _is_example(grid: Grid, number: int, header: Header) -> bool:
 def _report_headers(
     grid: Grid, layout: SheetLayout, header: Header, sha256: str, findings: list[Finding]
 ) -> None:
-    titles = [column.title for column in layout.columns]
+    left = [column.title for column in layout.offered if column.key not in {MARK, *header.columns}]
     for place, text in header.unknown:
         findings.append(
             Finding(
@@ -92,7 +93,7 @@ def _report_headers(
                 subject=layout.title,
                 subject_kind=layout.noun,
                 message=f"the column {text!r} is not known here and was not read",
-                remedy="rename it to a header of the template if it should be read" + near(text, titles),
+                remedy="rename it to a header of the template if it should be read" + _candidates(text, left),
                 origin=_origin(grid, sha256, header.row, place),
             )
         )
@@ -124,6 +125,14 @@ def _report_headers(
                 origin=_origin(grid, sha256, header.row, double.place),
             )
         )
+
+
+def _candidates(text: str, left: Sequence[str]) -> str:
+    """The headers that an unknown one may mean: those near to it, else all that the sheet lacks, if they are few."""
+    nearest = near(text, left)
+    if nearest or not left or len(left) > _FEW_HEADERS:
+        return nearest
+    return f"; this sheet has none of: {', '.join(left)}"
 
 
 def _report_hidden(rows: Sequence[SheetRow], grid: Grid) -> None:
