@@ -5,7 +5,7 @@ Where things live:
 - ``reader`` positions and tokens; ``expression_grammar`` the grammar that limits, gates, applicability and filters
   share; ``value_grammar``, ``bound_grammar``, ``tolerance_grammar``, ``at_grammar``, ``shape_grammar``,
   ``population_grammar`` the parts of a limit, ``joint_grammar`` what joins them, ``whole_grammar`` what belongs to
-  all of it, ``grammar`` the whole
+  all of it, ``grammar`` the whole, ``entrance`` loads it when it is needed
 - ``phrases`` words that say a side, ``suggestion`` a spelling that works, for every refusal
 - ``settling`` which unit a limit has, and what does not add; ``conversion`` units that meet in it
 - ``expression`` parse and evaluate expressions; ``expression_value`` how, on arrays; ``inputs`` where names look
@@ -19,6 +19,7 @@ Nothing here looks anything up: declared values and conditions are handed in.
 from specflow.limits.alternative import Alternative, alternatives, choose, rule_of
 from specflow.limits.bounds import Bounds, LimitContext
 from specflow.limits.difference import limit_difference
+from specflow.limits.entrance import parse_limit
 from specflow.limits.evaluation import evaluate_limit
 from specflow.limits.expression import (
     evaluate_condition,
@@ -29,7 +30,6 @@ from specflow.limits.expression import (
     parse_condition,
     parse_expression,
 )
-from specflow.limits.grammar import parse_limit
 from specflow.limits.text import limit_text
 from specflow.limits.tree import limit_inputs
 from specflow.limits.words import limit_words
