@@ -5,11 +5,14 @@ from __future__ import annotations
 import numpy as np
 
 from specflow.budgets.chain import LineKey, Overrides, ReadLine, line_key
+from specflow.budgets.forms import CASCADE_ROLES, LOSSES
 from specflow.errors import CalculationError, DocumentError, UnitError
 from specflow.model.base import code_key
-from specflow.model.budget import Budget, BudgetLine, BudgetPosition
+from specflow.model.budget import Budget, BudgetLine, BudgetPosition, Law
 from specflow.parameters import Dictionary
 from specflow.units import format_value, parse_unit
+
+_STATED_ONCE = ("noise_figure", "iip3", "iip2", "ip1db")
 
 
 def check_readable(budget: Budget, dictionary: Dictionary, values: Overrides | None) -> None:
@@ -25,6 +28,8 @@ def check_readable(budget: Budget, dictionary: Dictionary, values: Overrides | N
         )
     for line in budget.lines:
         _check_document(line, where, dictionary)
+    _check_figures_once(budget, where)
+    _check_source(budget, where)
     groups = {code_key(line.correlation_group) for line in budget.lines if line.correlation_group}
     for name in (name for one in budget.correlations for name in (one.first, one.second)):
         if code_key(name) not in groups:
@@ -41,6 +46,46 @@ def check_readable(budget: Budget, dictionary: Dictionary, values: Overrides | N
             where=where,
             hint="add the line first, or correct position and parameter",
         )
+
+
+def _check_figures_once(budget: Budget, where: str) -> None:
+    """Refuse one figure of a position stated in two ways, of which only one could be taken."""
+    if budget.law is not Law.CASCADE:
+        return
+    seen: dict[tuple[int, str], BudgetLine] = {}
+    for line in budget.lines:
+        role = CASCADE_ROLES.get(code_key(line.parameter))
+        if role is None or role.figure not in _STATED_ONCE:
+            continue
+        first = seen.setdefault((line.position, role.figure), line)
+        if first is not line:
+            raise DocumentError(
+                f"{line.parameter} says again what {first.parameter} of the position says",
+                where=f"{where}, {line.place}",
+                hint="keep one of the two",
+            )
+
+
+def _check_source(budget: Budget, where: str) -> None:
+    """Refuse a source that does not stand at the input, and one beside an input level."""
+    if budget.law is not Law.CASCADE:
+        return
+    first = min((position.order for position in budget.chain), default=0)
+    for line in budget.lines:
+        if code_key(line.parameter) != "output_power":
+            continue
+        if line.position != first:
+            raise DocumentError(
+                "a source stands at the input of a chain; behind it the level follows from the gains",
+                where=f"{where}, {line.place}",
+                hint="give the block its gain, or begin the chain with it",
+            )
+        if budget.input_level is not None:
+            raise DocumentError(
+                f"the budget has an input level of {budget.input_level:g} {budget.input_level_unit} besides the source",
+                where=f"{where}, {line.place}",
+                hint="keep one of the two",
+            )
 
 
 def _check_document(line: BudgetLine, where: str, dictionary: Dictionary) -> None:
@@ -75,7 +120,7 @@ def check_line(read: ReadLine, position: BudgetPosition, where: str) -> None:
         )
     least = float(values.min())
     name = code_key(line.parameter)
-    if read.role.form.rises < 0 and read.role.figure == "gain" and least < 0:
+    if name in LOSSES and least < 0:
         raise CalculationError(
             f"{line.parameter} is {format_value(least)} {line.unit}",
             where=where,
@@ -90,8 +135,8 @@ def check_line(read: ReadLine, position: BudgetPosition, where: str) -> None:
                 where=where,
                 hint="temperatures are absolute; no stage improves the signal-to-noise ratio",
             )
-    if position.passive and read.role.figure == "gain":
-        most = float(read.figure(values).max())
+    if position.passive and name == "gain":
+        most = float(read.convert(values).max())
         if most > 0:
             raise CalculationError(
                 f"the passive block has a gain of {format_value(most)} dB",

@@ -15,6 +15,7 @@ from specflow.budgets.margins import Bar, bars_of
 from specflow.budgets.outputs import Output
 from specflow.budgets.read import read_budget
 from specflow.budgets.result import BudgetResult, OutputResult
+from specflow.budgets.spread import correlation_matrix
 from specflow.errors import CalculationError
 from specflow.model.base import code_key
 from specflow.model.budget import Budget
@@ -45,6 +46,7 @@ def prepare(
 ) -> Prepared:
     """Read and check a budget; every way of evaluating starts here."""
     requirements = served(budget, snapshot)
+    correlation_matrix(budget, budget.lines)  # refuses one that cannot be
     chain = read_budget(budget, snapshot, dictionary, values=values)
     outputs = outputs_of(budget, snapshot, dictionary)
     check_complete(chain, outputs)

@@ -16,6 +16,7 @@ from numpy.typing import NDArray
 from specflow.budgets.chain import Chain, ReadLine
 from specflow.budgets.paths import Law, gradient_of_positions, groups_of, joined
 from specflow.calculators.decibel import NEPER, T0
+from specflow.model.base import code_key
 from specflow.model.budget import Law as BudgetLaw
 from specflow.units import Kind, parse_unit
 
@@ -59,6 +60,8 @@ def figures_of(
         arrays["gain"] = gain
     for name in wanted - {"gain", "noise_figure", "amount", *_PORTS}:
         arrays[name] = _sum_of(chain, values, name, shape)
+    if "antenna_gain" in arrays:
+        _of_all_elements(chain, arrays["antenna_gain"])
     if "amount" in wanted:
         arrays["amount"] = _amounts(chain, values, shape)
     for name in wanted & set(_PORTS):
@@ -99,6 +102,15 @@ def _sum_of(chain: Chain, values: Sequence[Floats], figure: str, shape: tuple[in
     return array
 
 
+def _of_all_elements(chain: Chain, antenna_gain: Floats) -> None:
+    """Make the (embedded) gain of one element that of the N in phase: 10·log N more than one, transmitting or receiving.
+
+    Source: EIRP = P_total + 10·log N + G_element, G/T = G_element + 10·log N - 10·log T.
+    """
+    for row in {read.row for read in chain.lines if read.role.figure == "antenna_gain"}:
+        antenna_gain[row] += 10.0 * math.log10(chain.positions[row].count)
+
+
 def _amounts(chain: Chain, values: Sequence[Floats], shape: tuple[int, ...]) -> Floats:
     array = np.zeros((len(chain.positions), *shape))
     for read, value in zip(chain.lines, values, strict=True):
@@ -112,7 +124,7 @@ def of_elements(chain: Chain, read: ReadLine) -> tuple[float, float]:
 
     Powers of N elements add: 10·log N where they are independent (per element), 20·log N where they are in phase
     (common). Beside the signal, which is in phase, independent errors lose 10·log N and common ones stay. Plain amounts
-    (watts) count N times; a gain of N equal elements is that of one.
+    (watts) count N times; a gain of N equal elements is that of one, but the antenna gain of N in phase is N times that.
     """
     law, count = chain.budget.law, chain.positions[read.row].count
     if count == 1:
@@ -125,7 +137,8 @@ def of_elements(chain: Chain, read: ReadLine) -> tuple[float, float]:
     if not unit.is_log:
         return float(count), 0.0
     if law is BudgetLaw.SUM:
-        return 1.0, 0.0 if unit.kind is Kind.RATIO else decibels
+        is_gain = unit.kind is Kind.RATIO and code_key(read.line.parameter) != "antenna_gain"
+        return 1.0, 0.0 if is_gain else decibels
     if unit.kind is Kind.RATIO:
         return 1.0, -decibels if independent else 0.0
     return 1.0, decibels if independent else 2.0 * decibels

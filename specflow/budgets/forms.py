@@ -74,6 +74,8 @@ LOSSES = (
     "pointing_loss",
 )
 
+GAINS = ("gain", "antenna_gain")
+
 #: Parameter of a line -> its role in a cascade.
 CASCADE_ROLES: dict[str, Role] = {
     "gain": Role("gain", "dB", AS_IT_IS),

@@ -9,8 +9,9 @@ from numpy.typing import NDArray
 
 from specflow.budgets.chain import Chain, ReadLine
 from specflow.budgets.figures import of_elements
-from specflow.budgets.forms import AS_IT_IS, LOSS, PHASE_NOISE, TEMPERATURE
+from specflow.budgets.forms import AS_IT_IS, LOSS, LOSSES, PHASE_NOISE, TEMPERATURE
 from specflow.calculators.noise import noise_temperature
+from specflow.model.base import code_key
 from specflow.parameters import Dictionary
 from specflow.units import converter, parse_unit
 
@@ -66,6 +67,8 @@ def figure_of_line(chain: Chain, read: ReadLine, at_position: Floats, gain_db: F
         if read.role.port == "output":
             level = level + gain_db - (1.0 if read.role.figure == "ip1db" else 0.0)
         return level
+    if read.role.figure == "antenna_gain":
+        return at_position - 10.0 * math.log10(chain.positions[read.row].count)
     if read.role.figure == "amount":
         factor, offset = of_elements(chain, read)
         return (at_position - offset) / factor
@@ -85,7 +88,10 @@ def domain(chain: Chain, read: ReadLine) -> tuple[float, float]:
         case "amount":
             unit = parse_unit(read.role.unit)
             if read.role.form is LOSS:
-                return -300.0, 0.0
+                is_loss = code_key(read.line.parameter) in LOSSES
+                return (-300.0, 0.0) if is_loss else (-300.0, 300.0)
+            if code_key(read.line.parameter) in LOSSES:
+                return 0.0, 300.0
             return (-300.0, 300.0) if unit.is_log else (0.0, 1e6)
     return -300.0, 300.0
 

@@ -215,6 +215,12 @@ def _temperatures(budget: Budget, own: Sequence[Columns]) -> tuple[Floats, list[
     notes: list[str] = []
     for row, (position, columns) in enumerate(zip(budget.chain, own, strict=True)):
         found, name = physical_temperature(columns)
+        if found is not None and float(found.min()) < 0:
+            raise ConditionsError(
+                f"{name} is {float(found.min()):.4g} K, below 0 K",
+                where=f"budget {budget.id}, {position.label} (position {position.order})",
+                hint="correct the conditions set, or the condition map of the block",
+            )
         if found is not None:
             temperatures[row] = found
         if position.passive and budget.law is Law.CASCADE:
@@ -230,6 +236,12 @@ def _temperatures(budget: Budget, own: Sequence[Columns]) -> tuple[Floats, list[
 
 
 def _line_notes(budget: Budget) -> list[str]:
-    return [
+    counts = {position.order: position.count for position in budget.chain}
+    arrays = [
+        f"{line.place}: the gain of one of {counts[line.position]} elements, which add in phase"
+        for line in budget.lines
+        if code_key(line.parameter) == "antenna_gain" and counts[line.position] > 1
+    ]
+    return arrays + [
         f"{line.place}: growth allowance of {line.growth:g} taken off" for line in budget.lines if line.growth
     ]

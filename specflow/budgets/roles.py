@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from specflow.budgets.forms import AS_IT_IS, CASCADE_ROLES, ERROR_VECTOR_ROLES, LOSS, LOSSES, Role
+from specflow.budgets.forms import AS_IT_IS, CASCADE_ROLES, ERROR_VECTOR_ROLES, GAINS, LOSS, LOSSES, Role
 from specflow.errors import DocumentError, UnitError
 from specflow.model.base import code_key
 from specflow.model.budget import Budget, BudgetLine, Law
@@ -38,12 +38,20 @@ def _role_in_sum(budget: Budget, line: BudgetLine, dictionary: Dictionary) -> Ro
     """A term of a sum: a ratio in dB beside a quantity in dB, else the unit of the quantity itself."""
     parameter = dictionary.get(budget.quantity.parameter)
     assert parameter is not None  # checked before any line is read
-    form = LOSS if code_key(line.parameter) in LOSSES and budget.law is Law.SUM else AS_IT_IS
+    is_turned = budget.law is Law.SUM and _counts_against(line, budget)
+    form = LOSS if is_turned else AS_IT_IS
     quantity = parse_unit(parameter.unit)
     own = parse_unit(line.unit)
     if budget.law is Law.SUM and quantity.is_log and own.kind is Kind.RATIO:
         return Role("amount", "dB", form)
     return Role("amount", parameter.unit, form)
+
+
+def _counts_against(line: BudgetLine, budget: Budget) -> bool:
+    """Whether a line is taken off: a loss in a sum of gains, and a gain in a sum of losses, but no loss among losses."""
+    if code_key(budget.quantity.parameter) in LOSSES:
+        return code_key(line.parameter) in GAINS
+    return code_key(line.parameter) in LOSSES
 
 
 def to_role(line: BudgetLine, role: Role, dictionary: Dictionary, where: str) -> Converter:

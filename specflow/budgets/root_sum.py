@@ -14,7 +14,7 @@ from specflow.budgets.margins import Bar
 from specflow.budgets.outputs import Output
 from specflow.budgets.ranges import ServedRange, held_between, slopes_at, value_at
 from specflow.budgets.result import BudgetResult
-from specflow.budgets.spread import bounds, correlation_matrix, elements, moments, moves
+from specflow.budgets.spread import bounds, check_bounds, correlation_matrix, elements, moments, moves
 from specflow.errors import CalculationError
 from specflow.model.base import code_key
 from specflow.model.budget import Budget
@@ -74,6 +74,7 @@ def rss(
     Raises CalculationError where a line does not say it, or where the law bends too much; else as ``evaluate_budget``.
     """
     prepared = prepare(budget, snapshot, dictionary, values=values)
+    check_bounds(prepared.chain)
     means = _one_meaning(prepared.chain)
     nominal = nominal_result(prepared)
     outputs = tuple(

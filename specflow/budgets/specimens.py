@@ -11,11 +11,12 @@ from numpy.typing import NDArray
 
 from specflow.budgets.chain import Chain, ReadLine
 from specflow.budgets.figures import figures_of
-from specflow.budgets.forms import AS_IT_IS
+from specflow.budgets.forms import AS_IT_IS, LOSSES
 from specflow.budgets.outputs import Output
 from specflow.budgets.paths import groups_of
 from specflow.budgets.spread import moves
 from specflow.calculators.cascade import cascade_results
+from specflow.model.base import code_key
 from specflow.model.budget import Law
 from specflow.model.budget_line import Meaning
 from specflow.units import Converter, converter
@@ -56,11 +57,10 @@ def physical_ends(chain: Chain) -> dict[int, Ends]:
         if tolerance is None or not moves(read.line) or tolerance.meaning is Meaning.LIMITS:
             continue  # limits that reach beyond 0 were refused
         zero = float(_back(read)(0.0))
-        if read.role.figure in ("noise_figure", "source_k") or (
-            read.role.figure == "gain" and read.role.form.rises < 0
-        ):
+        name = code_key(read.line.parameter)
+        if read.role.figure in ("noise_figure", "source_k") or name in LOSSES:
             ends[number] = (zero, np.inf)
-        elif read.role.figure == "gain" and chain.positions[read.row].passive:
+        elif name == "gain" and chain.positions[read.row].passive:
             ends[number] = (-np.inf, zero)
     return ends
 

@@ -10,6 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.budgets.chain import Chain, ReadLine
+from specflow.budgets.forms import LOSSES
 from specflow.errors import CalculationError
 from specflow.model.base import code_key
 from specflow.model.budget import Budget
@@ -113,7 +114,8 @@ def group_matrix(budget: Budget, names: Sequence[str]) -> Floats:
                 matrix[i, j] = stated.get(frozenset((first, second)), 0.0)
     if len(names) and float(np.linalg.eigvalsh(matrix).min()) < -_SMALL:
         listed = ", ".join(
-            f"{one.first} and {one.second} {one.coefficient:+g}" for one in budget.correlations
+            f"{_members(budget, one.first)} and {_members(budget, one.second)} {one.coefficient:+g}"
+            for one in budget.correlations
         )
         raise CalculationError(
             f"these correlations cannot hold together (the matrix is not positive semi-definite): {listed}",
@@ -123,13 +125,17 @@ def group_matrix(budget: Budget, names: Sequence[str]) -> Floats:
     return matrix
 
 
+def _members(budget: Budget, group: str) -> str:
+    """Name a correlation group with its lines."""
+    lines = [line.place for line in budget.lines if code_key(line.correlation_group) == code_key(group)]
+    return f"{group} [{', '.join(lines)}]"
+
+
 def check_bounds(chain: Chain) -> None:
     """Refuse limits that reach where a figure cannot be: a loss, noise figure or temperature below 0."""
     for read in chain.lines:
         name = code_key(read.line.parameter)
-        is_loss = read.role.figure == "gain" and (
-            read.role.form.rises < 0 or chain.positions[read.row].passive
-        )
+        is_loss = name in LOSSES or (name == "gain" and chain.positions[read.row].passive)
         is_noise = name in ("noise_figure", "noise_temperature", "antenna_noise_temperature")
         if not moves(read.line) or not (is_loss or is_noise):
             continue
@@ -137,7 +143,7 @@ def check_bounds(chain: Chain) -> None:
         if tolerance is None or tolerance.meaning is Meaning.SIGMA:
             continue
         low, high = bounds(read)
-        if is_noise or read.role.form.rises < 0:
+        if is_noise or name in LOSSES:
             short = float(np.min(read.convert(low)))
         else:
             short = -float(np.max(high))

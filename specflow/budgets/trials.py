@@ -46,6 +46,8 @@ class Probability:
     @property
     def words(self) -> str:
         """Say the probability with its confidence."""
+        if not self.trials:
+            return "not known: no limit is known at any condition"
         return (
             f"{100 * self.value:.4g} % ({100 * self.low:.4g} to {100 * self.high:.4g} % with 95 % confidence, "
             "sampling only: what is assumed of the lines is not part of it)"
@@ -266,7 +268,8 @@ def _result(run: _Run, tally: _Tally, seed: int) -> MonteCarloResult:
     met = np.ones(run.trials, np.bool_)
     for worst in tally.worst:
         met &= worst >= 0
-    joint = probability(int(np.count_nonzero(met)), run.trials)
+    is_known = any(bar.required.any() for _, bar in run.bars)
+    joint = probability(int(np.count_nonzero(met)), run.trials) if is_known else UNKNOWN
     notes = (*run.prepared.notes, *_notes(run, tally.clipped))
     return MonteCarloResult(run.chain.budget, run.nominal, run.trials, seed, tuple(outputs), joint, notes)
 

@@ -64,7 +64,15 @@ class ChainTable:
     def whole(self, figure: str) -> Term:
         """Return the sum of the lines of a figure over the whole chain."""
         terms = [taken_term(one.form, stated) for one, stated in self.lines if one.figure == figure]
+        terms += [
+            Term(f"10*LOG10({count})", 10.0 * math.log10(count))
+            for count in (self.outcome.positions[row].count for row in self._rows_of(figure))
+            if figure == "antenna_gain" and count > 1
+        ]
         return Term(f"({'+'.join(term.text for term in terms)})", math.fsum(term.value for term in terms))
+
+    def _rows_of(self, figure: str) -> list[int]:
+        return sorted({one.row for one, _ in self.lines if one.figure == figure})
 
     # Given
 
@@ -193,6 +201,8 @@ class ChainTable:
             return self._at_input(row, figure, lines[0][0], terms[0], count)
         if figure == "amount":
             terms = [self._of_elements(one, term, count) for (one, _), term in zip(lines, terms, strict=True)]
+        if figure == "antenna_gain" and count.value > 1:
+            terms.append(Term(f"10*LOG10({count.text})", 10.0 * math.log10(count.value)))
         return Term("+".join(term.text for term in terms), math.fsum(term.value for term in terms))
 
     def _of_elements(self, one: LineOutcome, term: Term, count: Term) -> Term:

@@ -13,7 +13,7 @@ from specflow.conditions import parse_map_entry
 from specflow.errors import SpecflowError
 from specflow.model.base import Document
 from specflow.model.budget import Budget, Correlation
-from specflow.model.budget_line import ConditionTable, Drift, LineTolerance, Trace
+from specflow.model.budget_line import ConditionTable, Drift, LineTolerance, Meaning, Trace
 from specflow.model.conditions import ConditionMap
 from specflow.parameters import load_dictionary
 from tests.budgets.chains import POZAR_10_2, a_chain, project_of
@@ -331,3 +331,57 @@ def test_a_map_whose_sources_the_set_does_not_state_leaves_the_blocks_own_terms_
     conditions = a_conditions_set("CS", a_dimension("temperature_baseplate", "°C", values=(41.0,)))
     snapshot = project_of(budget, conditions, warm, limit=at_least(1))
     assert evaluate_budget(budget, snapshot, DICTIONARY).of("gain").result == pytest.approx(10.0)
+
+
+@pytest.mark.parametrize(
+    ("first", "second"),
+    [
+        (("noise_figure", 1.4), ("noise_temperature", 500.0)),
+        (("iip3", 5.0), ("oip3", 25.0)),
+        (("ip1db", 5.0), ("op1db", 15.0)),
+    ],
+)
+def test_one_figure_of_a_position_stated_in_two_ways(
+    first: tuple[str, float], second: tuple[str, float]
+) -> None:
+    error = refusal(a_chain({"block": "A", "gain": 10.0, first[0]: first[1], second[0]: second[1]}))
+    assert f"{second[0]} says again what {first[0]}" in error.message and "A" in error.where
+
+
+def test_a_source_behind_the_input_of_a_chain() -> None:
+    budget = a_chain(
+        {"block": "A", "gain": 10.0}, {"block": "PA", "output_power": 30.0}, parameter="output_power"
+    )
+    error = refusal(budget.model_copy(update={"input_level": -5.0}))
+    assert "a source stands at the input" in error.message and "PA output_power (position 2)" in error.where
+
+
+def test_a_source_beside_an_input_level() -> None:
+    budget = a_chain(
+        {"block": "A", "output_power": 0.0}, {"block": "B", "gain": 3.0}, parameter="output_power"
+    )
+    error = refusal(budget.model_copy(update={"input_level": -10.0}))
+    assert "input level of -10 dBm besides the source" in error.message
+
+
+def test_a_temperature_below_absolute_zero_names_block_and_condition() -> None:
+    cold = a_conditions_set("CS", a_dimension("temperature_ambient", "degC", values=(-300.0, 20.0)))
+    budget = a_chain({"block": "CAB", "insertion_loss": 1.0, "passive": True}, conditions="CS")
+    error = refusal(budget, cold)
+    assert "temperature_ambient is -26.85 K, below 0 K" in error.message and "CAB" in error.where
+
+
+def test_correlations_that_cannot_hold_together_name_their_lines_however_the_budget_is_evaluated() -> None:
+    sigma = LineTolerance(minus=0.3, plus=0.3, meaning=Meaning.SIGMA, k=2)
+    stages = [
+        {
+            "block": name,
+            "gain": 1.0,
+            "more": {"gain": {"tolerance": sigma, "correlation_group": name.lower()}},
+        }
+        for name in ("A", "B", "C")
+    ]
+    pairs = (("a", "b", 0.9), ("b", "c", 0.9), ("a", "c", -0.9))
+    correlations = tuple(Correlation(first=one, second=two, coefficient=value) for one, two, value in pairs)
+    error = refusal(a_chain(*stages, parameter="gain", correlations=correlations))
+    assert "not positive semi-definite" in error.message and "A gain (position 1)" in error.message

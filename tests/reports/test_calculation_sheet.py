@@ -176,6 +176,20 @@ def test_gains_and_losses_of_a_plain_sum_have_their_signs() -> None:
     assert any(cell.number == pytest.approx(17.0) for cell in cells(made) if cell.formula)
 
 
+def test_an_antenna_of_n_elements_is_counted_in_the_sheet() -> None:
+    source = {"block": "PA", "output_power": 20.0, "count": 16}
+    antenna = {"block": "ANT", "antenna_gain": 5.0, "antenna_noise_temperature": 60.0, "count": 16}
+    for stages, parameter, unit in (
+        ((source, antenna), "eirp", "dBm"),
+        ((antenna, {"block": "LNA", "gain": 20.0, "noise_figure": 2.0}), "g_over_t", "dB/K"),
+    ):
+        budget = a_chain(*stages, parameter=parameter)
+        project = project_of(budget, limit=at_most(100, unit))
+        found = budget_outcome(budget, project, receiver.DICTIONARY, NOMINAL)
+        made = calculation_sheet(found, 0, NAMED)
+        assert max(differences(made)) < 1e-9
+
+
 def test_every_way_in_which_a_law_takes_a_line_has_a_formula() -> None:
     forms = {role.form for role in (*CASCADE_ROLES.values(), *ERROR_VECTOR_ROLES.values())}
     assert forms <= set(FORMS)
