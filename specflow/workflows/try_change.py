@@ -10,7 +10,7 @@ import numpy as np
 
 from specflow.budgets.trial import BudgetEffect, BudgetState, alternatives, budget_effects
 from specflow.changes import diff, due_revision
-from specflow.errors import SpecflowError
+from specflow.errors import DocumentError, SpecflowError
 from specflow.limits import limit_difference
 from specflow.model.base import Document, code_key
 from specflow.model.budget import Allocation, Budget
@@ -87,9 +87,18 @@ def try_changes(store: ProjectStore, texts: Sequence[str], as_of: date) -> Trial
 
 
 def keep_trial(store: ProjectStore, trial: Trial, *, by: str, reason: str) -> int:
-    """Store the changes of a trial; return the project revision. ConflictError when the project went on since."""
+    """Store the changes of a trial; return the project revision. ConflictError when the project went on since.
+
+    DocumentError where a budget that can be evaluated now could no longer be.
+    """
     if not trial.changes:
         return trial.project_revision
+    for one in trial.budgets:
+        if one.after is not None and one.after.error and (one.before is None or not one.before.error):
+            raise DocumentError(
+                f"the budget {one.budget} could no longer be evaluated: {one.after.error}",
+                hint="correct the change; nothing was stored",
+            )
     return store.apply(trial.changes, by=by, reason=reason, expected_revision=trial.project_revision)
 
 

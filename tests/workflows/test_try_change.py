@@ -140,6 +140,15 @@ def test_a_budget_that_can_no_longer_be_evaluated_says_why(tmp_path: Path) -> No
     assert after is not None and "there is no noise figure" in after.error
 
 
+def test_a_change_after_which_a_budget_cannot_be_evaluated_is_not_kept(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        trial = try_changes(store, ["RX LNA noise_figure = -3 dB"], AS_OF)
+        before = store.revision
+        with pytest.raises(SpecflowError, match=r"RX could no longer be evaluated.*below 0 dB"):
+            keep_trial(store, trial, by="A. Invented", reason="tried")
+        assert store.revision == before
+
+
 @pytest.mark.parametrize(
     ("text", "message"),
     [
