@@ -124,8 +124,11 @@ def put_report(report: Report) -> None:
 
 
 def report_as_json(report: Report) -> dict[str, Any]:
-    """Return a report as an object: its facts by name, and each table under its key."""
-    facts = dict(report.facts)
+    """Return a report as an object: its facts by name (a list where a name comes again), each table under its key."""
+    found: dict[str, list[str]] = {}
+    for name, text in report.facts:
+        found.setdefault(name, []).append(text)
+    facts = {name: texts[0] if len(texts) == 1 else texts for name, texts in found.items()}
     tables = {table.key: table_as_json(table) for table in report.tables}
     return {"title": report.title, "subtitle": report.subtitle, "facts": facts, **tables}
 

@@ -57,6 +57,7 @@ def test_json_has_tables_with_numbers_and_the_data_of_the_pictures(command: Comm
     last = told["cumulative"][-1]
     assert last["noise_figure_number"] == pytest.approx(float(outcome.quantities[0].result[0]))
     assert {"margins", "ways", "shares", "slopes", "facts"} <= told.keys()
+    assert told["facts"]["Assumed"] == list(outcome.notes) and len(outcome.notes) > 1
     assert [one["kind"] for one in told["pictures"]][:2] == ["levels", "contributions"]
 
 
