@@ -15,6 +15,8 @@ from specflow.model.parameter import Better, Parameter
 from specflow.parameters import suits
 from specflow.units import ONE, Unit, parse_unit
 
+#: Parameters of one matter that share no word.
+_OTHER_WAYS = {"vswr": "return_loss", "return_loss": "vswr"}
 _NO_NUMBERS = frozenset({"nan", "inf", "infinity"})
 
 
@@ -47,7 +49,7 @@ def limit_cell(
         return None
     if not hint and _lacks_unit(row, column, text, limit, parameter, intake):
         return None
-    _check_kind(row, column, limit, parameter)
+    _check_kind(row, column, limit, parameter, intake)
     if named is not None:
         _check_unit_column(row, column, limit, named)
     return _with_unit_in_text(limit, hint, parameter)
@@ -123,7 +125,7 @@ def _check_unit_column(row: SheetRow, column: str, limit: Limit, named: Unit) ->
         )
 
 
-def _check_kind(row: SheetRow, column: str, limit: Limit, parameter: Parameter) -> None:
+def _check_kind(row: SheetRow, column: str, limit: Limit, parameter: Parameter, intake: Intake) -> None:
     """Refuse a limit whose unit cannot be one of its parameter.
 
     Of alternatives, one member of its kind is enough; a limit on a formula of several readings has a unit of its own.
@@ -133,9 +135,28 @@ def _check_kind(row: SheetRow, column: str, limit: Limit, parameter: Parameter) 
     own = [limit.unit] if limit.unit else [one.limit.unit for one in alternatives(limit) if not one.quantity]
     units = [unit for unit in own if unit]
     if units and not any(suits(parameter, unit) for unit in units):
+        kin = [one for one in _kin(parameter, intake) if any(suits(one, unit) for unit in units)]
+        meant = f": {', '.join(f'{one.key} ({one.unit})' for one in kin[:3])}" if kin else ""
+        plain = parameter.unit == ONE.symbol
         row.fault(
             column,
-            f"the limit is in {' and '.join(units)}, but {parameter.title} ({parameter.key}) is in {parameter.unit}",
-            f"write the limit in a unit such as {parameter.unit}, or name the parameter that is meant",
+            f"the limit is in {' and '.join(units)}, but {parameter.title} ({parameter.key}) is "
+            + ("a plain number" if plain else f"in {parameter.unit}"),
+            f"write the limit {'as a plain number' if plain else f'in a unit such as {parameter.unit}'}, "
+            f"or name the parameter that is meant{meant}",
             rule="workbook-unit-kind",
         )
+
+
+def _kin(parameter: Parameter, intake: Intake) -> list[Parameter]:
+    """The parameters that say the same matter in another way: noise figure and temperature, spurious and its ratio."""
+    other = _OTHER_WAYS.get(parameter.key)
+    return [
+        one
+        for key, one in intake.dictionary.by_key.items()
+        if key == other or (key != parameter.key and _stem(key) == _stem(parameter.key))
+    ]
+
+
+def _stem(key: str) -> str:
+    return key.partition("_")[0].removesuffix("s")

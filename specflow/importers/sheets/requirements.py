@@ -28,6 +28,7 @@ from specflow.units import convert, format_value, parse_quantity, parse_unit
 
 _ALWAYS = frozenset({"", "u", "always", "all", "unconditional"})
 _NONE = frozenset({"none", "no conditions"})
+_NOT_STATED = frozenset({"n/a", "n.a.", "na", "none", "no limit"})
 _DEFAULT_TAKEN = "workbook-default-taken"
 _SIZES = (("GHz", 1e9), ("MHz", 1e6), ("kHz", 1e3), ("Hz", 1.0))
 
@@ -138,7 +139,10 @@ def _limit(row: SheetRow, intake: Intake, parameter: Parameter | None) -> Limit 
         row.fault(column, "no limit is given", "write the least or the greatest value")
     if column in row.spoiled:
         return None
-    if least and greatest:
+    if least and greatest and _NOT_STATED & {least.casefold(), greatest.casefold()}:
+        least, greatest = ("" if end.casefold() in _NOT_STATED else end for end in (least, greatest))
+        text = _one_sided(">=", least) if least else _one_sided("<=", greatest) if greatest else "n/a"
+    elif least and greatest:
         text = f"{least} to {greatest}"
     else:
         text = _one_sided(">=", least) if least else _one_sided("<=", greatest)

@@ -75,6 +75,23 @@ def test_the_text_of_a_bare_number_is_shown_with_the_unit_of_its_column(
     assert found.limit.text == text
 
 
+@pytest.mark.parametrize(
+    ("least", "greatest", "words"),
+    [
+        ("n/a", "24", "EIRP: at most 24 dBm"),
+        (21, "N/A", "EIRP: at least 21 dBm"),
+        ("none", "TBR 24", "EIRP: at most 24 dBm; to be reviewed (TBR): it computes but cannot close"),
+        ("n/a", "n/a", "EIRP: not applicable"),
+    ],
+)
+def test_an_end_that_is_not_applicable_is_no_end(
+    tmp_path: Path, least: Any, greatest: Any, words: str
+) -> None:
+    draft = load(tmp_path, Limit=None, Min=least, Max=greatest, Unit="dBm")
+    assert not draft.findings
+    assert draft.echoes["R-1"] == words
+
+
 def test_a_unit_that_is_written_twice_the_same_is_no_conflict(tmp_path: Path) -> None:
     assert requirement(tmp_path, Limit=">= 45 dBm", Unit="dBm").limit.unit == "dBm"
     assert requirement(tmp_path, Limit="20 dBm +2/-3 dB", Unit=" dBm ").limit.unit == "dBm"
@@ -288,6 +305,26 @@ def test_a_word_that_the_dictionary_does_not_have_is_doubtful_not_wrong(tmp_path
 def test_a_limit_of_another_kind_is_refused_naming_both_units(tmp_path: Path) -> None:
     (finding,) = load(tmp_path, Limit=">= 3 GHz").findings
     assert finding.message == "the limit is in GHz, but EIRP (eirp) is in dBm"
+
+
+@pytest.mark.parametrize(
+    ("parameter", "limit", "message", "meant"),
+    [
+        ("noise_figure", "<= 600 K", "is in dB", "noise_temperature (K)"),
+        ("vswr", ">= 14 dB", "VSWR (vswr) is a plain number", "return_loss (dB)"),
+        ("frequency_error", "± 500 kHz", "is in ppm", "frequency_error_absolute (Hz)"),
+        ("mask_emission", "<= -12 dBr", "is in dBm", "mask_emission_relative (dBr)"),
+    ],
+)
+def test_a_limit_of_another_kind_names_the_parameter_that_may_be_meant(
+    tmp_path: Path, parameter: str, limit: str, message: str, meant: str
+) -> None:
+    found = next(
+        one for one in load(tmp_path, Parameter=parameter, Limit=limit).findings if one.severity == "error"
+    )
+    assert found.rule == "workbook-unit-kind"
+    assert message in found.message
+    assert meant in found.remedy
 
 
 def test_a_bare_number_takes_its_unit_from_the_unit_column_only(tmp_path: Path) -> None:
