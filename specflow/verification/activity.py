@@ -108,11 +108,22 @@ def _provers(
     wanted = {code_key(name) for name in named}
     able = [one for one in items if not wanted or code_key(one.item) in wanted]
     if provers.rule == "any one":
-        return [max(able or items, key=_most_proved)], 0
+        return [_first_of(able or items)], 0
     ranked = sorted((one for one in able if one.item), key=_most_proved, reverse=True)
     if provers.rule == "each of":
         return ranked, max(len(wanted) - len(ranked), 0)
     return ranked[: provers.number], max(provers.number - len(ranked), 0)
+
+
+def _first_of(items: Sequence[ItemPoints]) -> ItemPoints:
+    """Return the item that comes first; most are told apart by their counts alone."""
+    if len(items) == 1:
+        return items[0]
+    proved = [one.results.k for one in items]
+    most = max(proved)
+    if proved.count(most) == 1:
+        return items[proved.index(most)]
+    return max(items, key=_most_proved)
 
 
 def _most_proved(one: ItemPoints) -> tuple[int, int, float]:
@@ -217,10 +228,13 @@ def _smallest(
     """Return the point of the smallest plain margin among readings that count."""
     best: tuple[float, ItemPoints, int] | None = None
     for one, allowed in _candidates(chosen, failing):
-        plain = one.results.margin
-        margin = np.where(allowed & (plain == plain), plain, np.inf)
-        place = int(margin.argmin())
+        margin = np.where(allowed, one.results.margin, np.inf)
+        place = int(margin.argmin())  # of the first that is none, if any
         least = float(margin[place])
+        if least != least:
+            margin[margin != margin] = np.inf
+            place = int(margin.argmin())
+            least = float(margin[place])
         if least < np.inf and (best is None or least < best[0]):
             best = least, one, place
     if best is None:

@@ -175,7 +175,7 @@ def _items(grid: Grid, names: Sequence[str], governing: Rows) -> list[ItemPoints
     """Spread the governing readings over all cells, and cut the grid into items."""
     found = _Spread(grid, governing)
     verdict, counted, proved, effective = _verdicts(grid, found)
-    known = list(_known(grid, found).items())
+    known = _known(grid, found)
     rank = found(grid.bench.credit.rank, -1)
     marginal = found(grid.bench.readings.marginal, False) & counted
     stale = _stale(grid).reshape(found.shape)
@@ -183,14 +183,8 @@ def _items(grid: Grid, names: Sequence[str], governing: Rows) -> list[ItemPoints
     ids = tuple([table.id for table in tables])
     items: list[ItemPoints] = []
     for i, name in enumerate(names):
-        results = PointResults(
-            item=name,
-            verdict=verdict[i],
-            proved=proved[i],
-            counted=counted[i],
-            tables=ids,
-            **{field: values[i] for field, values in known},
-        )
+        figures: list[Any] = [*[values[i] for values in known], ids]
+        results = PointResults(name, verdict[i], proved[i], counted[i], *figures)
         items.append(ItemPoints(name, results, tables, effective[i], rank[i], stale[i], marginal[i], grid, i))
     return items
 
@@ -235,24 +229,29 @@ def _verdicts(grid: Grid, found: _Spread) -> tuple[Codes, Flags, Flags, Codes]:
     return verdict, counted, proved, effective
 
 
-def _known(grid: Grid, found: _Spread) -> dict[str, NDArray[Any]]:
-    """Return the figures of each cell, by the field of ``PointResults`` that holds them."""
+def _known(grid: Grid, found: _Spread) -> tuple[NDArray[Any], ...]:
+    """Return the figures of each cell, in the order of the fields of ``PointResults``, from ``margin`` to ``row``."""
     readings, records = grid.bench.readings, grid.bench.records
     low = found(readings.low, np.nan)
-    source = found.of_record(records.source, -1)
-    column = np.array([one.place for one in records.sources], np.int32)[source]
-    return {
-        "margin": found(readings.margin, np.nan),
-        "guarded_margin": found(readings.guarded, np.nan),
-        "value_low": low,
-        "value_high": low if readings.high is readings.low else found(readings.high, np.nan),
-        "u": found(readings.u, np.nan),
-        "lower": _side(readings.lower, found),
-        "upper": _side(readings.upper, found),
-        "table": source,
-        "column": column if found.full else np.where(source < 0, np.int32(-1), column),
-        "row": found.of_record(records.row, -1),
-    }
+    if found.full and len(records.sources) == 1:
+        source = np.zeros(found.shape, np.int32)
+        column = _filled(found.shape, records.sources[0].place, np.int32)
+    else:
+        source = found.of_record(records.source, -1)
+        column = np.array([one.place for one in records.sources], np.int32)[source]
+        column[source < 0] = -1
+    return (
+        found(readings.margin, np.nan),
+        found(readings.guarded, np.nan),
+        low,
+        low if readings.high is readings.low else found(readings.high, np.nan),
+        found(readings.u, np.nan),
+        _side(readings.lower, found),
+        _side(readings.upper, found),
+        source,
+        column,
+        found.of_record(records.row, -1),
+    )
 
 
 def _side(side: NDArray[np.float64], found: _Spread) -> NDArray[np.float64]:

@@ -170,7 +170,6 @@ def _said(requirement: Requirement, facts: Facts, found: Assessment, decisions: 
     """Return plain sentences about the status, most important first."""
     said = [*facts.waiving.exceeded, *facts.split_remarks]
     approval = decisions.latest_approval(requirement.id)
-    ready = compliance(facts).value
     if approval is not None and approval.decision == "closed":
         if approval.requirement_revision != requirement.revision:
             said.append(
@@ -179,7 +178,8 @@ def _said(requirement: Requirement, facts: Facts, found: Assessment, decisions: 
             )
         elif approval.computed_label and label_and_close_out(facts)[1] is not CloseOut.CLOSED:
             said.append(
-                f"the board closed it on {approval.on} as {approval.computed_label}; now it is {ready}"
+                f"the board closed it on {approval.on} as {approval.computed_label}; "
+                f"now it is {compliance(facts).value}"
             )
     if approval is not None and approval.decision == "kept open":
         said.append(

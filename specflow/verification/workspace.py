@@ -289,6 +289,6 @@ def _coded(names: TextColumn, identify: Callable[[str], str]) -> tuple[NDArray[n
     found = [identify(label) for label in names.labels]
     places = [ids.setdefault(code_key(name), (len(ids), name))[0] for name in found]
     nobody = 0
-    if (names.codes < 0).any() or not places:
+    if np.count_nonzero(names.codes < 0) or not places:
         nobody = ids.setdefault("", (len(ids), ""))[0]
-    return np.array([*places, nobody], np.intp)[names.codes], tuple(name for _, name in ids.values())
+    return np.array([*places, nobody], np.intp).take(names.codes), tuple([name for _, name in ids.values()])
