@@ -25,6 +25,7 @@ from specflow.model.limit import (
     Tolerance,
     Undefined,
 )
+from specflow.units import parse_unit
 
 
 def nodes_below(node: LimitNode) -> tuple[LimitNode, ...]:
@@ -55,6 +56,26 @@ def tree_units(node: LimitNode) -> tuple[str, ...]:
         if isinstance(part, Bound | Between | Tolerance | Mask | Undefined)
     ]
     return tuple(dict.fromkeys(unit for unit in units if unit))
+
+
+def states_bandwidth(node: LimitNode) -> bool:
+    """Tell whether every bound of the limit says in which bandwidth it holds; of alternatives one is enough."""
+    match node:
+        case MeasuredIn():
+            return True
+        case PowerSum(bandwidth=bandwidth) if bandwidth is not None:
+            return True
+        case Mask(unit=unit, segments=segments):
+            return _is_density(unit) or all(segment.bandwidth is not None for segment in segments)
+        case Bound(unit=unit) | Between(unit=unit) | Tolerance(unit=unit):
+            return _is_density(unit)
+        case Alternatives(members=members):
+            return any(states_bandwidth(member) for member in members)
+    return all(states_bandwidth(part) for part in nodes_below(node))
+
+
+def _is_density(unit: str) -> bool:
+    return bool(unit) and parse_unit(unit).bandwidth_hz is not None
 
 
 def undefined_in(node: LimitNode) -> bool:

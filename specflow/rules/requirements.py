@@ -7,15 +7,13 @@ from itertools import islice
 
 from specflow.errors import ExpressionError
 from specflow.limits import expression_names, parse_condition
-from specflow.limits.tree import walk_limit
+from specflow.limits.tree import states_bandwidth
 from specflow.model.declared import DeclaredValue
-from specflow.model.limit import Limit, Mask, MeasuredIn
 from specflow.model.requirement import Requirement
 from specflow.model.verdict import ActivityResult, PointResults, RequirementStatus
 from specflow.rules.base import Found
 from specflow.rules.facts import Facts, shown
 from specflow.rules.words import MOST_LISTED, counted, listed
-from specflow.units import parse_unit
 
 
 def unverified(facts: Facts) -> Iterator[Found]:
@@ -137,19 +135,9 @@ def bandwidth_not_stated(facts: Facts) -> Iterator[Found]:
         parameter = facts.dictionary.get(requirement.quantity.parameter)
         if parameter is None or not parameter.needs_bandwidth:
             continue
-        if requirement.quantity.bandwidth_hz is None and not _states_bandwidth(requirement.limit):
+        if requirement.quantity.bandwidth_hz is None and not states_bandwidth(requirement.limit.tree):
             message = f"{parameter.title} is limited to {requirement.limit.text}, in no stated bandwidth"
             yield Found(requirement.id, message, origin=requirement.origin)
-
-
-def _states_bandwidth(limit: Limit) -> bool:
-    if limit.unit and parse_unit(limit.unit).bandwidth_hz is not None:
-        return True
-    return any(
-        isinstance(node, MeasuredIn)
-        or (isinstance(node, Mask) and all(segment.bandwidth is not None for segment in node.segments))
-        for node in walk_limit(limit.tree)
-    )
 
 
 def unapproved_tailoring(facts: Facts) -> Iterator[Found]:

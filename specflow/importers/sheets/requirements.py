@@ -17,6 +17,7 @@ from specflow.importers.sheets.row import SheetRow
 from specflow.importers.sheets.sheet import Sheet
 from specflow.importers.sheets.spelling import near
 from specflow.limits import limit_words, parse_condition
+from specflow.limits.tree import states_bandwidth
 from specflow.model.base import MAX_CODE_LENGTH, code_key
 from specflow.model.block import Block, Tier
 from specflow.model.conditions import ConditionsSet
@@ -246,6 +247,7 @@ def _bandwidth(row: SheetRow, intake: Intake, parameter: Parameter, limit: Limit
         and parameter.needs_bandwidth
         and limit is not None
         and limit.state is not LimitState.TBD
+        and not states_bandwidth(limit.tree)
     ):
         intake.note(
             row,

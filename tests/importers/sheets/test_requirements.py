@@ -92,6 +92,27 @@ def test_an_end_that_is_not_applicable_is_no_end(
     assert draft.echoes["R-1"] == words
 
 
+@pytest.mark.parametrize(
+    ("limit", "rules"),
+    [
+        ("mask(offset[MHz], max dBm, in 1 MHz: 0..5: 0; 5..50: -12 in 10 MHz)", []),
+        ("mask(offset[MHz], max dBm/MHz: 0..5: 0; 5..50: -12)", []),
+        ("mask(offset[MHz], max dBm: 0..5: 0; 5..50: -12 in 10 MHz)", ["workbook-no-bandwidth"]),
+        ("by offset[MHz] (0..5: <= -30 dBm in 1 MHz; 5..50: <= -20 dBm in 10 MHz)", []),
+        ("by offset[MHz] (0..5: <= -30 dBm in 1 MHz; 5..50: <= -20 dBm)", ["workbook-no-bandwidth"]),
+        ("looser(<= -36 dBm in 1 MHz; <= -60 dBc)", []),
+        ("<= -36 dBm", ["workbook-no-bandwidth"]),
+    ],
+)
+def test_a_reference_bandwidth_is_missed_only_where_a_part_of_the_limit_states_none(
+    tmp_path: Path, limit: str, rules: list[str]
+) -> None:
+    offsets = [{"ID": "CS", "Dimension": "offset", "Required": "2, 20 MHz"}]
+    row = ROW | {"Parameter": "mask_emission", "Limit": limit, "Conditions": "CS"}
+    draft = read_sheets(tmp_path, a_snapshot(a_block("UT")), conditions=offsets, requirements=[row])
+    assert [one.rule for one in draft.findings] == rules
+
+
 def test_a_unit_that_is_written_twice_the_same_is_no_conflict(tmp_path: Path) -> None:
     assert requirement(tmp_path, Limit=">= 45 dBm", Unit="dBm").limit.unit == "dBm"
     assert requirement(tmp_path, Limit="20 dBm +2/-3 dB", Unit=" dBm ").limit.unit == "dBm"
