@@ -100,8 +100,7 @@ def run(app: typer.Typer) -> int:
         show_error(error)
         return int(error.exit_code)
     except KeyboardInterrupt:
-        say("interrupted; nothing half-written was left behind")
-        return int(ExitCode.INTERRUPTED)
+        result = int(ExitCode.INTERRUPTED)
     except SystemExit as error:
         if isinstance(
             error.__context__, BrokenPipeError
@@ -116,6 +115,8 @@ def run(app: typer.Typer) -> int:
         return int(ExitCode.ENVIRONMENT)
     except Exception as error:  # click's own errors carry their exit code and know how to show themselves
         return _end_of_click(error)
+    if result == ExitCode.INTERRUPTED:  # click too turns the interrupt into this code, and says nothing
+        say("interrupted; nothing half-written was left behind")
     return int(result) if isinstance(result, int) else int(ExitCode.CLEAN)
 
 

@@ -103,6 +103,11 @@ class Measured:
     options: tuple[str, ...] = ()
 
 
+def merge(sheet: Worksheet) -> None:
+    """Merge the first two values."""
+    sheet.merge_cells("C2:C3")
+
+
 def hidden(sheet: Worksheet) -> None:
     """Hide the third row."""
     sheet.row_dimensions[3].hidden = True
@@ -114,7 +119,9 @@ def with_last(*cells: Any) -> list[list[Any]]:
 
 
 MEASURED = {
-    "an unknown unit": Measured([["Item", "f (GHz)", "Gain (dBx)"], ROWS[1]], ("dBx", "nearest: dB"), "a.xlsx, data, C1"),
+    "an unknown unit": Measured(
+        [["Item", "f (GHz)", "Gain (dBx)"], ROWS[1]], ("dBx", "nearest: dB"), "a.xlsx, data, C1"
+    ),
     "a unit of another kind": Measured(
         [["Item", "f (GHz)", "NF (dBm)"], ROWS[1]], ("a ratio", "correct the header"), "a.xlsx, data, C1"
     ),
@@ -125,7 +132,7 @@ MEASURED = {
     "a missing sheet": Measured(ROWS, ("no sheet 'Gian'", "'data'"), "a.xlsx", options=("--sheet", "Gian")),
     "prose": Measured([["only prose"]], ("no measurement table", "headers"), "a.xlsx"),
     "headers only": Measured(ROWS[:1], ("no measurement table", "headers"), "a.xlsx"),
-    "merged cells": Measured(ROWS, ("merged cells C2:C3", "--take-rest"), "data, C2", lambda sheet: sheet.merge_cells("C2:C3")),
+    "merged cells": Measured(ROWS, ("merged cells C2:C3", "--take-rest"), "data, C2", merge),
     "a formula without value": Measured(with_last("LNA-1", 29, "=B2"), ("never calculated", "mend"), "data, C4"),
     "an error cell": Measured(with_last("LNA-1", 29, "#REF!"), ("#REF!", "mend"), "data, C4"),
     "a hidden row": Measured(ROWS, ("the row is hidden", "show it"), "data, A3", hidden),
@@ -171,7 +178,8 @@ class Loaded:
     def write(self, path: Path) -> Path:
         """Write the workbook; ``change`` edits its sheet Requirements."""
         every = {
-            "blocks": self.blocks, "requirements": self.requirements, "conditions": self.conditions, "prose": self.prose,
+            "blocks": self.blocks, "requirements": self.requirements,
+            "conditions": self.conditions, "prose": self.prose,
         }  # fmt: skip
         project_workbook(path, **{name: rows for name, rows in every.items() if rows})
         if self.change is not None:
@@ -216,7 +224,9 @@ LOADED = {
         ("B2:B3 are merged",), "Requirements", BLOCKS, [REQUIREMENT, REQUIREMENT | {"ID": "R-8"}],
         change=lambda sheet: sheet.merge_cells("B2:B3"),
     ),
-    "a formula without value": Loaded(("without a stored value",), LIMIT_CELL, BLOCKS, [REQUIREMENT], change=putting("=1+44")),
+    "a formula without value": Loaded(
+        ("without a stored value",), LIMIT_CELL, BLOCKS, [REQUIREMENT], change=putting("=1+44")
+    ),
     "an error cell": Loaded(("#DIV/0!",), LIMIT_CELL, BLOCKS, [REQUIREMENT], change=putting("#DIV/0!")),
     "a hidden row": Loaded(("row 2 is hidden",), "Requirements", BLOCKS, [REQUIREMENT], change=hide_second),
     "an id twice": Loaded(("R-9 is given already",), "Requirements · A3", BLOCKS, [REQUIREMENT, REQUIREMENT]),

@@ -265,7 +265,8 @@ def test_a_project_that_another_program_holds(
     command: Command, project: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     path, before = book(tmp_path / "a.xlsx", ROWS), content(project)
-    monkeypatch.setitem(open_project.__kwdefaults__, "patience", 0.1)
+    defaults = open_project.__kwdefaults__ or {}
+    monkeypatch.setitem(defaults, "patience", 0.1)  # seconds that it waits for the other program
     with closing(sqlite3.connect(project, isolation_level=None)) as other:
         other.execute("BEGIN IMMEDIATE")
         outcome = command("attach", path, "--yes")
