@@ -17,6 +17,7 @@ from specflow.limits.tolerance_grammar import (
     PLUS_MINUS,
     nominal_unit,
     read_about_zero,
+    read_asymmetric_about_zero,
     read_tolerance,
     read_within,
     two_sided_zero,
@@ -148,6 +149,7 @@ def directed(draft: Draft, bare: Bare, side: Side | None = None) -> LimitNode:
         draft.say(f"{expression_text(bare.value)} has the direction of its neighbour")
         return _bound(draft, side, False, bare)
     if draft.better is Better.NEARER_ZERO:
+        _refuse_arithmetic(draft, bare)
         draft.say("no direction is written; nearer to zero is better, so it is read as ±")
         return two_sided_zero(draft, bare.value, bare.written, bare.place)
     if draft.better in (Better.LOWER, Better.HIGHER):
@@ -179,6 +181,9 @@ def _valued(draft: Draft) -> LimitNode | Bare | Typical:
     place = reader.place
     if reader.take_words("TBD") is not None:
         return _undefined(draft)
+    about_zero = read_asymmetric_about_zero(draft)
+    if about_zero is not None:
+        return about_zero
     value, written = read_valued(draft)
     if isinstance(value, Name) and not written and reader.sees(*COMPARED):
         return _of_quantity(draft, value)

@@ -10,8 +10,8 @@ from specflow.limits.expression_grammar import last_unit
 from specflow.limits.expression_shape import walk
 from specflow.limits.settling import settle_tolerance
 from specflow.limits.value_grammar import plain, read_valued
-from specflow.model.expression import Expression, Name, Number
-from specflow.model.limit import LimitNode, Tolerance
+from specflow.model.expression import Expression, Name, Negative, Number
+from specflow.model.limit import Between, LimitNode, Tolerance
 
 _ASYMMETRIC = re.compile(r"(?:\+ *(?=[\d.])[^/]{1,24}/ *[-–]|[-–] *(?=[\d.])[^/]{1,24}/ *\+)")
 PLUS_MINUS = ("±", "+/-", "+-")
@@ -70,7 +70,25 @@ def two_sided_zero(draft: Draft, amount: Expression, written: str, place: int) -
 def _asymmetric(
     draft: Draft, nominal: Expression, written: str, place: int, *, bracketed: bool = False
 ) -> LimitNode:
-    """Read ``+2/-3`` or ``-3/+2`` after a nominal; the unit may stand after each or after both."""
+    """Read ``+2/-3`` or ``-3/+2`` after a nominal."""
+    plus, minus, unit = _plus_and_minus(draft, bracketed=bracketed)
+    return _tolerance(draft, nominal, written, plus, minus, unit, place)
+
+
+def read_asymmetric_about_zero(draft: Draft) -> LimitNode | None:
+    """Read ``+9/-5 ppm`` or ``-5/+9 ppm`` without a nominal as the range from -5 to 9 ppm; None where none stands."""
+    place = draft.reader.place
+    if not _ASYMMETRIC.match(draft.reader.text, place):
+        return None
+    plus, minus, written = _plus_and_minus(draft)
+    unit = draft.settle([plus, minus], written, place)
+    draft.say("no nominal value is written, so the tolerances are read about zero")
+    lower, upper = Negative(operand=plain(minus, unit)), plain(plus, unit)
+    return Between(lower=lower, upper=upper, unit=unit)
+
+
+def _plus_and_minus(draft: Draft, *, bracketed: bool = False) -> tuple[Number, Number, str]:
+    """Read the two amounts, as plus and minus, and their unit, which may stand after each or after both."""
     reader = draft.reader
     first_sign = reader.take("+", "-", "–")
     first, first_unit = _amount(draft)
@@ -85,7 +103,7 @@ def _asymmetric(
     if first_unit and second_unit and second_unit != first_unit:
         reader.fail("the two tolerances have different units", hint="write both in one unit")
     plus, minus = (first, second) if first_sign == "+" else (second, first)
-    return _tolerance(draft, nominal, written, plus, minus, second_unit or first_unit, place)
+    return plus, minus, second_unit or first_unit
 
 
 def _amount(draft: Draft) -> tuple[Number, str]:

@@ -22,7 +22,13 @@ OFFSET = "the value after '@' is read as the offset from the carrier"
 DOWN = "the range is written from its upper end down"
 AS_DB = "the tolerance written in dBm is read as dB"
 
+ABOUT_ZERO = "(no nominal value is written, so the tolerances are read about zero)"
 READ = [
+    # two sides about zero
+    ("frequency_error", "+9/-5 ppm", f"from -5 ppm to 9 ppm {ABOUT_ZERO}"),
+    ("frequency_error", "-5 / +9 ppm", f"from -5 ppm to 9 ppm {ABOUT_ZERO}"),
+    ("frequency_error", "+9 ppm/-5 ppm", f"from -5 ppm to 9 ppm {ABOUT_ZERO}"),
+    ("gain", "-1/+0,5 dB", f"from -1 dB to 0.5 dB {ABOUT_ZERO}"),
     # one side
     ("gain", "> 20dB", "more than 20 dB"),
     ("gain", "≥ +20 dB", "at least 20 dB"),
@@ -179,6 +185,7 @@ REFUSED = [
     ("output_power", "45 dBm, 50 dBm max", "nothing can be made of ', 50 dBm max'", "<= 45 dBm"),
     ("supply_voltage", "28 V +10 % -15 %", "do not add", "28 V ± 10 %"),
     ("gain", "20 dB +10 %", "do not add", "28 dB ± 1 dB"),
+    ("frequency_error", "-5/9 ppm", "a quotient of plain numbers", "5..9 ppm"),
     ("mask_emission", "mask", "'mask' begins a limit of several parts", "mask(offset[MHz], max dBm"),
     ("mask_emission", "mask over offset: 5 MHz -13 dBm", "'mask' begins", "mask(offset[MHz], max dBm"),
     (
