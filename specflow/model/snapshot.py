@@ -6,7 +6,7 @@ import re
 from collections import defaultdict
 from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
-from functools import cached_property
+from functools import cached_property, lru_cache
 from typing import TypeVar, cast
 
 from specflow.model.base import Document, code_key
@@ -125,8 +125,12 @@ class Snapshot:
 
 def reading_order(code: str) -> tuple[tuple[int, int, str], ...]:
     """Return the sort key under which ``R-2`` comes before ``R-10``."""
-    runs = _RUNS.findall(code)
-    return tuple([(0, int(run), "") if run[0].isdecimal() else (1, 0, run) for run in runs])
+    return tuple(map(_run_key, _RUNS.findall(code)))
+
+
+@lru_cache(maxsize=1 << 14)  # codes are made of few words and many numbers, which come again in every noun
+def _run_key(run: str) -> tuple[int, int, str]:
+    return (0, int(run), "") if run[0].isdecimal() else (1, 0, run)
 
 
 def _grouped(documents: Iterable[D], keys: Callable[[D], Iterable[str]]) -> Mapping[str, Sequence[D]]:

@@ -46,7 +46,7 @@ _SERVES: dict[Method, frozenset[Method]] = {
     Method.SIMILARITY: frozenset({Method.SIMILARITY, Method.ANALYSIS, Method.TEST}),
 }
 _OBSERVED = frozenset({Method.TEST, Method.DEMONSTRATION, Method.INSPECTION})
-_HARDWARE = tuple(HardwareType)
+_HARDWARE = {one: place for place, one in enumerate(HardwareType)}
 _STAGES = tuple(Stage)
 
 
@@ -92,9 +92,12 @@ def credit(
         reason = _no_credit(activity, source, workspace)
         outdated = _outdated(activity, source.table)
         for item in records.items:
-            own = reason or _item_reason(activity, source, item, named, several, workspace)
-            kinds.append((_rank(activity, source, item, workspace), not own and not outdated, bool(outdated)))
-            why.update(dict.fromkeys(text for text in (own, outdated) if text))
+            fit = _is_representative(activity, source, item, workspace)
+            own = reason or _item_reason(activity, source, item, named, several, fit, workspace)
+            rank = _rank(activity, source, fit, workspace)
+            kinds.append((rank, not own and not outdated, bool(outdated)))
+            if own or outdated:
+                why.update(dict.fromkeys(text for text in (own, outdated) if text))
     return _spread(records, record, kinds, tuple(why))
 
 
@@ -155,6 +158,7 @@ def _item_reason(
     item: str,
     named: frozenset[str],
     several: bool,
+    representative: bool,
     workspace: Workspace,
 ) -> str:
     if is_of_design(source) and not item:
@@ -163,7 +167,7 @@ def _item_reason(
         return f"{source.table.id}: no item is named in the evidence"
     if named and code_key(item) not in named:
         return f"item {item} is not one of those named to prove it"
-    if not _is_representative(activity, source, item, workspace):
+    if not representative:
         kind = workspace.hardware_type(item).value
         return f"item {item} is {kind} hardware, credit needs {activity.credit_from.value} or better"
     return ""
@@ -172,17 +176,16 @@ def _item_reason(
 def _is_representative(activity: Activity, source: Source, item: str, workspace: Workspace) -> bool:
     if source.table.method not in _OBSERVED:
         return True
-    return _HARDWARE.index(workspace.hardware_type(item)) >= _HARDWARE.index(activity.credit_from)
+    return _HARDWARE[workspace.hardware_type(item)] >= _HARDWARE[activity.credit_from]
 
 
-def _rank(activity: Activity, source: Source, item: str, workspace: Workspace) -> int:
+def _rank(activity: Activity, source: Source, representative: bool, workspace: Workspace) -> int:
     table = source.table
     if code_key(table.file) in workspace.datasheets:
         return ESTIMATE
     if table.method in _OBSERVED:
         early = activity.planned and _STAGES.index(table.stage) < _STAGES.index(activity.stage)
-        fit = not early and _is_representative(activity, source, item, workspace)
-        return REPRESENTATIVE if fit else LESS_REPRESENTATIVE
+        return REPRESENTATIVE if representative and not early else LESS_REPRESENTATIVE
     if table.method is Method.SIMILARITY:
         return SIMILAR
     return VALIDATED if is_validated(table.simulation_validated) else REASONED

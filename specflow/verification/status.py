@@ -13,7 +13,7 @@ from specflow.model.base import code_key
 from specflow.model.block import Tier
 from specflow.model.limit import LimitState
 from specflow.model.requirement import Activity, Requirement
-from specflow.model.verdict import CloseOut, GoverningPoint, PointsState, RequirementStatus
+from specflow.model.verdict import CloseOut, GoverningPoint, PointsState, RequirementStatus, Verdict
 from specflow.verification.activity import ActivityOutcome
 from specflow.verification.applicability import applicability
 from specflow.verification.assessment import Assessment, assess
@@ -91,7 +91,7 @@ def with_evidence(
     outcomes, failing = found.outcomes, _failing(found)
     results = [outcome.result for outcome in outcomes]
     split, remarks = declared(decisions.splits.get(code_key(requirement.id), ()), failing)
-    verdicts = frozenset(verdict for outcome in outcomes for verdict in outcome.verdicts)
+    verdicts = frozenset[Verdict]().union(*[outcome.verdicts for outcome in outcomes])
     return replace(
         facts,
         counted=any(outcome.counted for outcome in outcomes),
@@ -126,10 +126,10 @@ def status_from(
         requirement=requirement.id,
         activities=results,
         standing=found.standing if found is not None else {},
-        k=sum(result.k for result in results),
-        n=sum(result.n for result in results),
-        n_failing=sum(result.n_failing for result in results),
-        n_missing=sum(result.n_missing for result in results),
+        k=sum([result.k for result in results]),
+        n=sum([result.n for result in results]),
+        n_failing=sum([result.n_failing for result in results]),
+        n_missing=sum([result.n_missing for result in results]),
         verdict=max(facts.verdicts),
         compliance=compliance(facts),
         close_out=closed,

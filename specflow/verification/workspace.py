@@ -194,7 +194,7 @@ class Workspace:
         """
         sources = self.sources.get((code_key(requirement.block), code_key(want.quantity.parameter)), ())
         own = code_key(requirement.id) if requirement.revision > 1 else ""
-        if not any(own and code_key(source.table.requirement or "") == own for source in sources):
+        if own and not any(code_key(source.table.requirement or "") == own for source in sources):
             own = ""
         key = code_key(requirement.block), want.key, own
         found = self._records.get(key)
