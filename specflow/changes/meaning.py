@@ -108,7 +108,10 @@ def moved_by(old: float, old_unit: str, new: float, new_unit: str) -> str:
     try:
         source, target = parse_unit(old_unit or "1"), parse_unit(new_unit or "1")
         old_there = old if source == target else converter(source, target)(old)
-        step = format_quantity(abs(new - old_there), tolerance_unit(target))
+        moved = abs(new - old_there)
+        # a conversion leaves digits that nobody stated
+        shown_step = moved if source == target else float(f"{moved:.6g}")
+        step = format_quantity(shown_step, tolerance_unit(target))
     except UnitError:
         return ""
     if not math.isfinite(old_there):  # no power in dBm is 0 W

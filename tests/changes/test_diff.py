@@ -223,6 +223,7 @@ def test_a_conditions_set_typed_otherwise_keeps_its_revision() -> None:
         (a_declared_value(), {"value": 24.0, "unit": "dBW"}, "the same value in dBW"),
         (a_declared_value(), {"value": 20.0, "unit": "dBW"}, "lowered by 4 dB (54 dBm → 20 dBW)"),
         (a_declared_value(value=25.0, unit="°C"), {"value": 30.0}, "raised by 5 K (25 → 30 °C)"),
+        (a_declared_value(value=19.5), {"unit": "W"}, "raised by 19.4109 W (19.5 dBm → 19.5 W)"),
         (a_declared_value(), {"unit": "GHz"}, ""),
         (a_declared_value(value=0.0, unit="W"), {"value": 30.0, "unit": "dBm"}, ""),
         (a_waiver(), {"expires_on": date(2027, 1, 30)}, "expires on 30 days later (2026-12-31 → 2027-01-30)"),

@@ -213,6 +213,16 @@ def test_numbers_typed_as_ids_are_read_as_text(tmp_path: Path) -> None:
     assert set(found(draft, Requirement)) == {"12", "4.5"}
 
 
+def test_a_decimal_number_as_an_id_is_doubtful_once_a_sheet(tmp_path: Path) -> None:
+    rows = [REQUIREMENT | {"ID": code} for code in (3, 4.1, 4.2, "4.30")]
+    draft = read_sheets(tmp_path, blocks=BLOCKS, requirements=rows)
+    (finding,) = draft.findings
+    assert (finding.rule, finding.severity) == ("workbook-decimal-id", Severity.WARNING)
+    assert finding.message == "the id is the number 4.1, which may have been typed as 4.10"
+    assert finding.origin is not None and finding.origin.cell == "A3"
+    assert set(found(draft, Requirement)) == {"3", "4.1", "4.2", "4.30"}
+
+
 def test_a_csv_file_named_after_a_noun_is_its_sheet(tmp_path: Path) -> None:
     path = tmp_path / "Requirements.csv"
     path.write_text("ID,Block,Parameter,Limit\nR-1,UT,eirp,>= 45 dBm\nR-2,UT,evm,8 %\n", "utf-8")

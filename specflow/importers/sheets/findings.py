@@ -6,6 +6,7 @@ from __future__ import annotations
 WORKBOOK_FINDINGS: dict[str, str] = {
     "workbook-cell": "A cell cannot be read, or says something that the document cannot hold.",
     "workbook-cycle": "Blocks, items or requirements go round in a circle.",
+    "workbook-decimal-id": "An id is a decimal number in the sheet, and may have lost a zero.",
     "workbook-default-taken": "Something was not stated, and the only possible value was taken.",
     "workbook-doubled-column": "Two columns of a sheet have headers that say the same.",
     "workbook-duplicate-id": "An id is given twice; ids are compared without case.",

@@ -56,6 +56,7 @@ class Sheet:
     def identify_rows(self, rows: Sequence[SheetRow], intake: Intake) -> None:
         """Give every row its code and register it. In grouped sheets an empty id continues the row above."""
         above = ""
+        doubtful = False
         for row in rows:
             continues = self.grouped and above and row.has("id") and not row.text("id")
             code = above if continues else self.identify(row, intake)
@@ -66,7 +67,23 @@ class Sheet:
                 row.fault(column, str(error), "use a short code of letters, digits and signs such as - . / _")
             if row.subject:
                 intake.register(self.document, row.subject, row, column, grouped=self.grouped)
+                doubtful = doubtful or _note_decimal_id(row, column, intake)
             above = row.subject
+
+
+def _note_decimal_id(row: SheetRow, column: str, intake: Intake) -> bool:
+    """Say once a sheet that an id is a decimal number: typed as 4.10 it is stored as 4.1, whatever the cell shows."""
+    value = row.grid.value(row.number, row.columns[column])
+    if column != "id" or not isinstance(value, float) or value.is_integer():
+        return False
+    intake.note(
+        row,
+        column,
+        f"the id is the number {row.subject}, which may have been typed as {row.subject}0",
+        "format the column as text and type the ids again",
+        rule="workbook-decimal-id",
+    )
+    return True
 
 
 def each_row(build: Build) -> Read:
