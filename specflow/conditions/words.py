@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
+from functools import lru_cache
 
 from specflow.conditions.dimensions import known_dimension
 from specflow.conditions.points import Points
@@ -12,6 +13,7 @@ from specflow.model.conditions import Combination, ConditionsSet, Dimension, Exc
 from specflow.units import format_unit, format_value, parse_unit, tolerance_unit
 
 
+@lru_cache(maxsize=4096)  # many points of many sets share few values
 def value_words(name: str, value: float, unit: str) -> str:
     """Say one value of a dimension: "29.5 GHz", "+85 °C ambient", "θ 30°", "supply 5 V"."""
     return _phrased(name, quantity_words(name, value, unit))

@@ -1,8 +1,8 @@
 """Full evaluation of 2,000 requirements, 100,000 required points, 1,000,000 values with per-value uncertainty.
 
 The floor is one raw ``GROUP BY ... NOT INDEXED`` of SQLite over the same values as rows, measured in the same run. The
-values come out of a project of the store, an SQLite file like the floor's, every time. Loading the documents is timed
-beside it; it has a benchmark of its own.
+values come out of a project of the store, an SQLite file like the floor's, every time. Loading the documents counts
+too. Times are of the processor, with the files in memory.
 """
 
 from __future__ import annotations
@@ -201,4 +201,4 @@ def test_full_evaluation_takes_at_most_twice_one_raw_group_by(per_table: int, tm
         f"ratio {evaluation / floor:.2f}; with the documents' loading ({loading:.2f} s) "
         f"{(evaluation + loading) / floor:.2f}"
     )
-    assert evaluation <= MOST * floor
+    assert evaluation + loading <= MOST * floor
