@@ -203,9 +203,9 @@ def _moved(before: Expression, after: Expression, unit: str, side: Side) -> list
 
 
 def _tolerances(before: Tolerance, after: Tolerance) -> list[str]:
-    units = _units(before.unit, after.unit) + _units(before.tolerance_unit, after.tolerance_unit)
-    if units:
-        return units
+    told = _tolerances_in_other_units(before, after)
+    if told:
+        return told
     changes: list[str] = []
     if before.nominal != after.nominal:
         old = "zero" if before.nominal is None else expression_text(before.nominal)
@@ -219,6 +219,22 @@ def _tolerances(before: Tolerance, after: Tolerance) -> list[str]:
     return changes + _named(
         "lower tolerance", _moved(before.minus, after.minus, before.tolerance_unit, Side.UPPER)
     )
+
+
+def _tolerances_in_other_units(before: Tolerance, after: Tolerance) -> list[str]:
+    """Tell a tolerance that is now in other units; nothing when both units stayed."""
+    own, spread = (before.unit, after.unit), (before.tolerance_unit, after.tolerance_unit)
+    changed = list(dict.fromkeys(_units(*own) + _units(*spread)))
+    if not changed:
+        return []
+    nominals = (before.nominal, after.nominal)
+    stays = nominals == (None, None)
+    if before.nominal is not None and after.nominal is not None:
+        stays = _moved_across(before.nominal, after.nominal, own, Side.UPPER) == _SAME
+    upper = _moved_across(before.plus, after.plus, spread, Side.UPPER)
+    lower = _moved_across(before.minus, after.minus, spread, Side.UPPER)
+    same = stays and upper == lower == _SAME
+    return [f"{'; '.join(changed)}{_SAME * same} ({node_text(before)} -> {node_text(after)})"]
 
 
 def _masks(before: Mask, after: Mask) -> list[str]:

@@ -69,6 +69,22 @@ from specflow.limits import limit_difference, parse_limit
             "-50 dBW/MHz max",
             "unit changed from dBW/4 kHz to dBW/MHz (<= -50 dBW/4 kHz -> <= -50 dBW/MHz)",
         ),
+        (
+            "± 7 ppm",
+            "± 7000 ppb",
+            "unit changed from ppm to ppb, the same in meaning (± 7 ppm -> ± 7000 ppb)",
+        ),
+        ("± 7 ppm", "± 7 ppb", "unit changed from ppm to ppb (± 7 ppm -> ± 7 ppb)"),
+        (
+            "20 ± 1 dBm",
+            "-10 ± 1 dBW",
+            "unit changed from dBm to dBW, the same in meaning (20 dBm ± 1 dB -> -10 dBW ± 1 dB)",
+        ),
+        (
+            "20 ± 1 dBm",
+            "-9 ± 1 dBW",
+            "unit changed from dBm to dBW (20 dBm ± 1 dB -> -9 dBW ± 1 dB)",
+        ),
         ("21..24 dBm", ">= 21 dBm", "upper limit 24 dBm removed"),
         (
             "21..24 dBm",
