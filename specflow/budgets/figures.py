@@ -103,7 +103,7 @@ def _sum_of(chain: Chain, values: Sequence[Floats], figure: str, shape: tuple[in
 
 
 def _of_all_elements(chain: Chain, antenna_gain: Floats) -> None:
-    """Make the (embedded) gain of one element that of the N in phase: 10·log N more than one, transmitting or receiving.
+    """Make the (embedded) gain of one element that of the N in phase: 10·log N more.
 
     Source: EIRP = P_total + 10·log N + G_element, G/T = G_element + 10·log N - 10·log T.
     """
@@ -124,7 +124,7 @@ def of_elements(chain: Chain, read: ReadLine) -> tuple[float, float]:
 
     Powers of N elements add: 10·log N where they are independent (per element), 20·log N where they are in phase
     (common). Beside the signal, which is in phase, independent errors lose 10·log N and common ones stay. Plain amounts
-    (watts) count N times; a gain of N equal elements is that of one, but the antenna gain of N in phase is N times that.
+    (watts) count N times; a gain of N equal elements is that of one, the antenna gain of N in phase is N times it.
     """
     law, count = chain.budget.law, chain.positions[read.row].count
     if count == 1:

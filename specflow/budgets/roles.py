@@ -48,7 +48,7 @@ def _role_in_sum(budget: Budget, line: BudgetLine, dictionary: Dictionary) -> Ro
 
 
 def _counts_against(line: BudgetLine, budget: Budget) -> bool:
-    """Whether a line is taken off: a loss in a sum of gains, and a gain in a sum of losses, but no loss among losses."""
+    """Whether a line is taken off: a loss among gains, a gain among losses."""
     if code_key(budget.quantity.parameter) in LOSSES:
         return code_key(line.parameter) in GAINS
     return code_key(line.parameter) in LOSSES

@@ -13,6 +13,7 @@ from specflow.model.change import Change
 from specflow.model.finding import Finding, Severity
 from specflow.store import ProjectStore
 from specflow.workflows.evaluate_project import project_dictionary
+from specflow.workflows.refused_budgets import without_refused_budgets
 
 
 @dataclass(frozen=True)
@@ -35,7 +36,7 @@ class LoadPreview:
 def preview_load(store: ProjectStore, path: Path) -> LoadPreview:
     """Read the workbook and compare it with the project; nothing is stored."""
     snapshot = store.load()
-    draft = read_workbook(path, snapshot, project_dictionary(snapshot))
+    draft = without_refused_budgets(read_workbook(path, snapshot, project_dictionary(snapshot)), snapshot)
     changes = diff(snapshot, draft.documents, removals=draft.removals)
     given = sum(change.action in ("add", "edit") for change in changes)
     return LoadPreview(

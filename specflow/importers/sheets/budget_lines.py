@@ -79,7 +79,7 @@ LAYOUT = SheetLayout(
             title="N in parallel",
             aliases=("Count", "N", "Elements"),
             field="positions",
-            guidance="Identical elements in parallel. Empty: 1. Once a position.",
+            guidance="Identical elements in parallel; figures are those of one. Empty: 1. Once a position.",
             width=12,
         ),
         SheetColumn(
