@@ -81,13 +81,22 @@ def known_in(
 
 
 def children_of_budget(snapshot: Snapshot, budget: Budget) -> list[Requirement]:
-    """Return the requirements that carry allocations of a budget, each once."""
+    """Return the requirements that hold lines of a budget, each once.
+
+    They are those that carry its allocations, and those below what it serves on a figure that it has: what a block is
+    allowed there counts, whether or not the budget gave it.
+    """
     links = [
         link
         for link in snapshot.all(Allocation)
         if link.budget is not None and code_key(link.budget) == code_key(budget.id)
     ]
     found = {code_key(link.child): snapshot.find(Requirement, link.child) for link in links}
+    figures = {(code_key(line.block), code_key(line.parameter)) for line in budget.lines}
+    for parent in budget.requirements:
+        for one in snapshot.children_of.get(code_key(parent), ()):
+            if (code_key(one.block), code_key(one.quantity.parameter)) in figures:
+                found.setdefault(code_key(one.id), one)
     return [one for one in found.values() if one is not None]
 
 

@@ -7,25 +7,31 @@ from pathlib import Path
 
 import pytest
 
+from specflow.budgets.closure import closure_of_children
+from specflow.budgets.probe import Probe
 from specflow.errors import DocumentError
 from specflow.model.base import Document
 from specflow.model.block import HardwareType
 from specflow.model.evidence import EvidenceColumns, EvidenceTable
 from specflow.model.requirement import Method
+from specflow.parameters import load_dictionary
 from specflow.store import ProjectStore
 from specflow.workflows.allocate import accept_allocation, preview_allocation
-from specflow.workflows.as_known import known_budget
+from specflow.workflows.as_known import children_of_budget, known_budget
 from specflow.workflows.evaluate_project import evaluate_project
 from specflow.workflows.known_tables import known_as_json, known_tables
 from specflow.workflows.record_known import record_known
 from tests.budgets import receiver
+from tests.budgets.chains import a_chain, project_of
 from tests.builders import (
     a_quantity,
+    a_requirement,
     a_value_column,
     adding,
     an_evidence_file,
     an_evidence_table,
     an_item,
+    at_least,
     some_columns,
     some_evidence,
 )
@@ -177,3 +183,17 @@ def test_nothing_known_is_nothing_to_record(tmp_path: Path) -> None:
         found = known_budget(store, "RX", AS_OF)
         with pytest.raises(DocumentError, match="no result to record"):
             record_known(store, found, by="A. Invented")
+
+
+def test_a_requirement_below_the_one_served_holds_its_line_without_an_allocation() -> None:
+    budget = a_chain({"block": "A", "gain": 10.0}, {"block": "B", "gain": 5.0}, parameter="gain")
+    quantity = a_quantity("gain")
+    below = a_requirement("R-A", block="A", quantity=quantity, limit=at_least(8), parents=("R-1",))
+    elsewhere = a_requirement("R-X", block="A", quantity=quantity, limit=at_least(9))
+    other = a_requirement("R-NF", block="A", quantity=a_quantity("noise_figure"), parents=("R-1",))
+    snapshot = project_of(budget, below, elsewhere, other, limit=at_least(12))
+    assert [one.id for one in children_of_budget(snapshot, budget)] == ["R-A"]
+    (found,) = closure_of_children(
+        Probe.of(budget, snapshot, load_dictionary()), children_of_budget(snapshot, budget)
+    ).limits
+    assert found.smallest == pytest.approx(8.0 + 5.0 - 12.0)
