@@ -65,7 +65,9 @@ def translated(where: str) -> Iterator[None]:
     """Turn what a database driver raises inside the block into StoreError; ``where`` names the project."""
     try:
         yield
-    except SpecflowError:
+    except SpecflowError as error:
+        if isinstance(error, StoreError):
+            error.where = error.where or where
         raise
     except Exception as error:
         fault = store_error(error, where)

@@ -116,14 +116,22 @@ class ProjectFile:
                 connection.execute("PRAGMA query_only = ON")
         except sqlite3.OperationalError as error:
             connection.close()
-            # A database in WAL mode needs its folder writable even to be read, unless nothing is left in the log.
-            if not _cannot_write(error) or Path(f"{self.path}-wal").exists():
+            # A database in WAL mode needs a folder that can be written, and a disk that is not full, even to be read,
+            # unless nothing is left in the log.
+            no_room = self.read_only and error.sqlite_errorname.startswith("SQLITE_IOERR_SHM")
+            if not (no_room or _cannot_write(error)) or self._has_log():
                 raise
             return self._connect("mode=ro&immutable=1")
         except BaseException:
             connection.close()
             raise
         return connection
+
+    def _has_log(self) -> bool:
+        try:
+            return Path(f"{self.path}-wal").stat().st_size > 0
+        except FileNotFoundError:
+            return False
 
     def _connect(self, how: str) -> sqlite3.Connection:
         return sqlite3.connect(
