@@ -12,6 +12,10 @@ import pytest
 from specflow.cli import build
 from specflow.cli.console import run
 from specflow.cli.options import PROJECT_VARIABLE
+from specflow.store import create_project
+from tests.builders import a_project, adding
+from tests.harbour import make_store
+from tests.importers.measured.make import PROJECT
 
 
 @dataclass(frozen=True)
@@ -40,3 +44,14 @@ def command(monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str],
         return Outcome(code, written.out, written.err)
 
     return specflow
+
+
+@pytest.fixture(scope="session")
+def made_once(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """Return a folder of projects to copy: ``empty``, ``terminal`` (no evidence yet) and ``harbour``, all .specflow."""
+    folder = tmp_path_factory.mktemp("projects")
+    create_project(folder / "empty.specflow", a_project()).close()
+    with create_project(folder / "terminal.specflow", a_project()) as store:
+        store.apply(adding(*PROJECT), by="A. B.")
+    make_store(folder / "harbour.specflow").close()
+    return folder

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 import resource
+import shutil
 import signal
 import subprocess
 import sys
@@ -12,19 +13,16 @@ from collections.abc import Iterator
 from contextlib import contextmanager
 from pathlib import Path
 from random import Random
-from shutil import copy, which
 
 import pytest
 
 from specflow.errors import ExitCode
-from specflow.store import create_project, open_project
-from tests.builders import a_project, adding
+from specflow.store import open_project
 from tests.cli.conftest import Command, Outcome
 from tests.cli.refusing import content, refused
-from tests.importers.measured.make import PROJECT
 
 HERE = Path(__file__).parents[2]
-LARGE = 150_000
+LARGE = 60_000
 
 #: The real command line, which says when it begins to read a file.
 READING = """
@@ -60,12 +58,9 @@ main()
 
 
 @pytest.fixture
-def project(tmp_path: Path) -> Path:
+def project(made_once: Path, tmp_path: Path) -> Path:
     """Return a project of blocks, items and one requirement."""
-    path = tmp_path / "terminal.specflow"
-    with create_project(path, a_project()) as store:
-        store.apply(adding(*PROJECT), by="A. B.")
-    return path
+    return Path(shutil.copy(made_once / "terminal.specflow", tmp_path))
 
 
 def measured(path: Path, rows: int, seed: int = 1) -> Path:
@@ -166,7 +161,7 @@ def test_two_processes_without_a_rendezvous(project: Path, tmp_path: Path) -> No
 @contextmanager
 def small_disk(folder: Path, size: str) -> Iterator[Path]:
     """Mount a disk of this size; the test is skipped where one may not."""
-    mount = which("mount")
+    mount = shutil.which("mount")
     if mount is None or os.geteuid() != 0:
         pytest.skip("only root may mount a small disk")
     folder.mkdir()
@@ -184,7 +179,7 @@ def test_a_full_disk(
 ) -> None:
     path, before = measured(tmp_path / "large.csv", LARGE), content(project)
     with small_disk(tmp_path / "disk", "1m") as disk:
-        there = Path(copy(project, disk))
+        there = Path(shutil.copy(project, disk))
         outcome = command("attach", path, "--yes", "--project", there)
         refused(outcome, "disk is full", "free some space", code=ExitCode.ENVIRONMENT, place=str(there))
         assert content(there) == before

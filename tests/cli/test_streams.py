@@ -6,6 +6,7 @@ import contextlib
 import json
 import os
 import re
+import shutil
 import subprocess
 import sys
 from collections.abc import Sequence
@@ -15,12 +16,10 @@ import pytest
 
 from specflow.cli.streams import HANDLER, SPELT_OUT, prepare_streams
 from specflow.errors import ExitCode
-from specflow.store import create_project, open_project
+from specflow.store import open_project
 from specflow.units import parse_unit
-from tests.builders import a_project, adding
 from tests.cli.conftest import Command
-from tests.harbour import make_store
-from tests.importers.measured.make import PROJECT, book
+from tests.importers.measured.make import book
 
 SPECFLOW = (sys.executable, "-m", "specflow")
 FULL = Path("/dev/full")
@@ -28,11 +27,9 @@ ESCAPE = re.compile(r"\x1b\[[0-9;]*m")
 
 
 @pytest.fixture
-def project(tmp_path: Path) -> Path:
+def project(made_once: Path, tmp_path: Path) -> Path:
     """Return the example of the tests, in a file."""
-    path = tmp_path / "terminal.specflow"
-    make_store(path).close()
-    return path
+    return Path(shutil.copy(made_once / "harbour.specflow", tmp_path))
 
 
 def shell(line: str, folder: Path, **more: str) -> subprocess.CompletedProcess[str]:
@@ -79,10 +76,8 @@ def test_a_reader_that_leaves_early_changes_no_exit_code(project: Path, line: st
     )
 
 
-def test_what_was_accepted_is_stored_though_the_reader_leaves(tmp_path: Path) -> None:
-    path = tmp_path / "terminal.specflow"
-    with create_project(path, a_project()) as store:
-        store.apply(adding(*PROJECT), by="A. B.")
+def test_what_was_accepted_is_stored_though_the_reader_leaves(made_once: Path, tmp_path: Path) -> None:
+    path = shutil.copy(made_once / "terminal.specflow", tmp_path)
     rows = [["Item", "f (GHz)", "Gain (dB)"], *(["LNA-1", 20 + n / 100, "x" * 300] for n in range(400))]
     book(tmp_path / "a.xlsx", [*rows, ["LNA-1", 27.5, 20.1]])
     done = shell("specflow attach a.xlsx --yes --take-rest | true", tmp_path)
