@@ -37,8 +37,8 @@ class BudgetPosition(Document):
     ``count`` identical elements work in parallel, fed by an equal share each and combined in phase without loss (losses
     of dividers and combiners are positions of their own). Neighbouring positions that name a ``path`` are parallel
     paths, one chain for each name, fed and combined in the same way. ``passive`` positions have no gain above 0 dB and
-    make the noise of their loss at their physical temperature. ``condition_map`` serves where the block's own map does not fit
-    this place.
+    make the noise of their loss at their physical temperature. ``condition_map`` serves where the block's own map
+    does not fit this place.
     """
 
     order: int

@@ -26,7 +26,9 @@ class TextColumn:
         """Build a column from words; None and "" are unstated."""
         labels: dict[str, int] = {}
         codes = np.fromiter(
-            (labels.setdefault(word, len(labels)) if word else UNSTATED for word in words), np.int32, len(words)
+            (labels.setdefault(word, len(labels)) if word else UNSTATED for word in words),
+            np.int32,
+            len(words),
         )
         return cls(codes, tuple(labels))
 

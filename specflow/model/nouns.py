@@ -55,7 +55,9 @@ NOUNS: tuple[Noun, ...] = (
         links=(("parents", "requirement"), ("block", "block"), ("conditions", "conditions_set")),
     ),
     Noun("activity", "activity", Activity, links=(("requirement", "requirement"),)),
-    Noun("budget", "budget", Budget, links=(("requirements", "requirement"), ("conditions", "conditions_set"))),
+    Noun(
+        "budget", "budget", Budget, links=(("requirements", "requirement"), ("conditions", "conditions_set"))
+    ),
     Noun(
         "allocation",
         "allocation",

@@ -53,7 +53,9 @@ class QuantityIdentity(Document):
     def differences(self, other: QuantityIdentity) -> tuple[str, ...]:
         """Name the parts in which the two differ; an unstated part on one side counts as a difference."""
         return tuple(
-            name for name in type(self).model_fields if _plain(getattr(self, name)) != _plain(getattr(other, name))
+            name
+            for name in type(self).model_fields
+            if _plain(getattr(self, name)) != _plain(getattr(other, name))
         )
 
 

@@ -38,7 +38,8 @@ def requirement_card(
 ) -> Card:
     """Return the card of one requirement; only its own evidence is read.
 
-    ``findings`` are those of the whole project, None when they are not known yet. ``outcomes`` are those of the budgets that serve it.
+    ``findings`` are those of the whole project, None when they are not known yet. ``outcomes`` are those of
+    the budgets that serve it.
     """
     status = results.of(requirement.id)
     finder = OriginFinder(snapshot)

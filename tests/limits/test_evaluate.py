@@ -172,7 +172,15 @@ def test_mask_bounds_inside_outside_at_the_shared_breakpoint_and_unknown() -> No
     assert found.upper[[0, 1, 2, 4]].tolist() == [-5.0, -13.0, -13.0, -13.0]
     assert found.bandwidth_hz[[0, 1]].tolist() == [1e6, 1e7]
     assert found.applies.tolist() == [True, True, True, False, True, False, True]
-    assert found.outside.tolist() == [False, False, False, False, False, True, False]  # 50 MHz is excluded on purpose
+    assert found.outside.tolist() == [
+        False,
+        False,
+        False,
+        False,
+        False,
+        True,
+        False,
+    ]  # 50 MHz is excluded on purpose
     assert found.unknown.tolist() == [False] * 6 + [True]
 
 

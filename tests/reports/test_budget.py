@@ -86,7 +86,12 @@ def test_margins_name_limit_place_and_reserve() -> None:
 
 def test_all_ways_stand_side_by_side_with_what_they_assume() -> None:
     table = ways_table(OUTCOME, NAMED)
-    assert column(table, "way")[:4] == ["nominal", "worst case", "root sum of squares, of limits", "monte carlo"]
+    assert column(table, "way")[:4] == [
+        "nominal",
+        "worst case",
+        "root sum of squares, of limits",
+        "monte carlo",
+    ]
     assert set(column(table, "requirement")) == {"R-noise_figure", "R-g_over_t"}
     for way in Way:
         assert f"{way.value}: " in table.intro

@@ -209,7 +209,8 @@ class _Cells:
         after = self._bytes[self._value_at + len(b"<v")]
         first = self._bytes[self._value_at + len(b"<v>")]
         blank = (after == ord("/")) | ((after == ord(">")) & (first == ord("<")))
-        blank |= self._stands(self._value_at + len(b"<v"), b" />")  # some writers leave a blank before the slash
+        # Some writers leave a blank before the slash.
+        blank |= self._stands(self._value_at + len(b"<v"), b" />")
         self.valued = (has_tag & ~blank) | inline
         self.cached = has_tag & (self.text | ~blank)
         shared = self.shared & self.valued & ~inline
