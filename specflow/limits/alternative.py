@@ -65,8 +65,3 @@ def choose(limit: Limit, passed: Sequence[Flags]) -> Flags:
     if rule_of(limit) is Rule.LOOSER:
         return np.asarray(reduce(np.logical_or, passed))
     return np.asarray(reduce(np.logical_and, passed))
-
-
-def member_words(alternative: Alternative) -> str:
-    """Name a member for messages."""
-    return f"{alternative.quantity} {alternative.limit.text}".strip()
