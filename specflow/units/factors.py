@@ -26,9 +26,10 @@ class Factor:
 
 
 def factorise(text: str) -> list[Factor]:
-    """Take "mW/(cm*cm)" or "W*m-2*MHz-1" apart; everything after a solidus is below the line up to the next one.
+    """Take "mW/(cm*cm)" or "W*m-2*MHz-1" apart; a solidus puts one factor, or one bracket, below the line.
 
-    Raises UnitError when the text is not a product or quotient of names.
+    "mW/cm*cm" is how sheets write mW/cm²: nobody multiplies by what was just divided by. "V/m*s" has two readings and
+    is refused. Raises UnitError, too, when the text is not a product or quotient of names.
     """
     tokens = _tokens(text)
     factors, end = _product(tokens, 0, text)
@@ -52,9 +53,19 @@ def _tokens(text: str) -> list[tuple[str, str]]:
 def _product(tokens: list[tuple[str, str]], place: int, text: str) -> tuple[list[Factor], int]:
     """Factors up to the closing bracket or the end."""
     factors: list[Factor] = []
+    below: list[Factor] = []
     sign = 1
     while True:
         new, place = _factor(tokens, place, text)
+        if sign == -1:
+            below = new
+        elif below and new == below:
+            sign = -1
+        elif below:
+            raise UnitError(
+                f"unit '{text}' has more than one meaning",
+                hint="what follows the solidus may be divided by or multiplied with: write a/(b*c), or a*c/b",
+            )
         factors += [replace(factor, exponent=factor.exponent * sign) for factor in new]
         if place >= len(tokens) or tokens[place][1] == ")":
             return factors, place

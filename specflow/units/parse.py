@@ -18,7 +18,10 @@ _MEASURE = re.compile(
     r"^(?P<unit>.*?[^\s_(\[,])[\s_,]*[(\[]?(?P<measure>rms|p-?p|pk-?pk|peak[- ]to[- ]peak|peak|pk)[)\]]?$",
     re.IGNORECASE,
 )
-_DEGREES = re.compile(r"(?:deg(?:ree)?s?\.? ?|° )([CFK])\b")
+_DEGREES = re.compile(r"(?:[Dd]eg(?:ree)?s?\.? ?|DEG ?|° )([CFK])\b")
+_PER = re.compile(r" ?\b[Pp]er |(?<=[A-Za-z])Per(?=[A-Z])")  # "dBm per MHz"; dBuVPerMeter, as exports name enumerations
+_SPLIT_DECIBEL = re.compile(r"^(d[Bb]) (?=[µu]?[mVAW](?:\b|/))")  # "dB uV": what follows cannot multiply decibels
+_DIRECT = re.compile(r"(?<=[VA]) ?(?:DC|dc)$")  # a direct voltage is a voltage
 _IN_BANDWIDTH = re.compile(r" in (?:an? )?(?=\d)")
 _DECIMAL_COMMA = re.compile(r"(?<=\d),(?=\d{1,2}(?!\d))")
 _BANDWIDTH_WORD = re.compile(r"(?<=Hz)\)? ?(?:BW|RBW|MBW|[Bb]andwidth)\)?$")
@@ -40,6 +43,8 @@ def _parsed(text: str) -> Unit:
     if len(text) > _LONGEST:
         raise UnitError(f"'{text[:40]}…' is too long to be a unit")
     bare = _without_brackets(text)
+    if len(bare) > 1 and bare[-1] in ".:" and bare[-2].isalpha():  # "GHz.", "MHz:", "deg."
+        bare = bare[:-1]
     try:
         return _read(bare)
     except UnitError as error:
@@ -57,8 +62,8 @@ def _read(text: str) -> Unit:
         measure = _MEASURES[re.sub(r"[- ]", "", measured["measure"].lower())]
         return compose.measured(_read(measured["unit"]), measure)
     plain = _DEGREES.sub(r"°\1", text).replace("°K", "K")
-    plain = _DECIMAL_COMMA.sub(".", plain)
-    plain = _BANDWIDTH_WORD.sub("", _IN_BANDWIDTH.sub("/", re.sub(r" ?\b[Pp]er ", "/", plain)))
+    plain = _DIRECT.sub("", _SPLIT_DECIBEL.sub(r"\1", _DECIMAL_COMMA.sub(".", plain)))
+    plain = _BANDWIDTH_WORD.sub("", _IN_BANDWIDTH.sub("/", _PER.sub("/", plain)))
     referred = _REFERRED.match(plain)
     if referred:
         return compose.referred(factorise(referred["reference"]))
