@@ -127,6 +127,14 @@ def create_noun_tables() -> None:
         attribute("stage", "verification stage"),
     )
     noun_table(
+        "derivation",
+        "derivation",
+        link("derivation", "again_of", "derivation", itself=True),
+        attribute("law", "the law that was applied"),
+        attribute("parameter", "key of the parameter that it gives"),
+    )
+    link_table("derivation", "derivation", "inputs", "evidence_table")
+    noun_table(
         "supersession",
         "supersession",
         link("supersession", "earlier", "evidence_table", nullable=False),
@@ -345,6 +353,7 @@ def downgrade() -> None:
         "history",
         "project_state",
         "budget_requirements",
+        "derivation_inputs",
         "requirement_parents",
         "approval",
         "baseline",
@@ -355,6 +364,7 @@ def downgrade() -> None:
         "item_change",
         "withdrawal",
         "supersession",
+        "derivation",
         "evidence_table",
         "evidence_file",
         "mapping",

@@ -9,7 +9,8 @@ Glossary (design words; see each module):
   ``expression.py``)
 - ``conditions set``, ``condition map`` (``conditions.py``); the same as arrays: ``columns.py``
 - ``declared value``, uncertainty register (``declared.py``)
-- ``evidence table`` and *record*, mapping, supersession, withdrawal, change record (``evidence.py``)
+- ``evidence table`` and *record*, mapping, supersession, withdrawal, change record (``evidence.py``);
+  *derivation*: a table made of others by a law (``derivation.py``)
 - ``budget``, ``allocation`` (``budget.py``); decisions of people: waiver, nonconformance, approval (``decision.py``)
 - ``verdict`` and the five axes of status (``verdict.py``); ``finding`` (``finding.py``)
 - ``change``, ``baseline``, ``report`` (a table as data), ``draft`` (an import before it is accepted)

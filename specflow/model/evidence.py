@@ -17,6 +17,7 @@ from numpy.typing import NDArray
 
 from specflow.model.base import Code, Document
 from specflow.model.columns import Columns, TextColumn
+from specflow.model.derivation import Covered
 from specflow.model.origin import Origin
 from specflow.model.parameter import QuantityIdentity
 from specflow.model.requirement import Method, Stage
@@ -90,7 +91,11 @@ class ConditionColumn(Document):
 
 
 class EvidenceTable(Document):
-    """One recorded table of one source file."""
+    """One recorded table of one source file, or one derived from such tables.
+
+    A derived table (``derivation``) keeps the file of its input, its rows point to the raw rows that govern, and
+    ``covers`` says over which ranges its values were taken.
+    """
 
     id: Code
     file: Code
@@ -122,6 +127,8 @@ class EvidenceTable(Document):
     accepted_at: str = ""
     provisional: bool = False
     left_out: tuple[LeftOut, ...] = ()
+    derivation: Code | None = None
+    covers: tuple[Covered, ...] = ()
     revision: int = 1
 
 

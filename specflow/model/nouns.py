@@ -11,6 +11,7 @@ from specflow.model.budget import Allocation, Budget
 from specflow.model.conditions import ConditionMap, ConditionsSet
 from specflow.model.decision import Approval, DeclaredSplit, Disposition, Nonconformance, Waiver
 from specflow.model.declared import DeclaredValue, UncertaintyEntry
+from specflow.model.derivation import Derivation
 from specflow.model.evidence import (
     EvidenceFile,
     EvidenceTable,
@@ -76,6 +77,12 @@ NOUNS: tuple[Noun, ...] = (
             ("requirement", "requirement"),
             ("mapping", "mapping"),
         ),
+    ),
+    Noun(
+        "derivation",
+        "derivation",
+        Derivation,
+        links=(("inputs", "evidence_table"), ("again_of", "derivation")),
     ),
     Noun(
         "supersession",

@@ -70,6 +70,10 @@ ATTRIBUTES: dict[str, tuple[tuple[str, str, str], ...]] = {
         ("method", "method", "verification method"),
         ("stage", "stage", "verification stage"),
     ),
+    "derivation": (
+        ("law", "law", "the law that was applied"),
+        ("parameter", "gives.parameter", "key of the parameter that it gives"),
+    ),
     "nonconformance": (("state", "state", "open or closed"),),
     "waiver": (("state", "state", "requested, approved, rejected, lapsed or closed"),),
     "disposition": (

@@ -1,0 +1,82 @@
+"""Derivations: a result that a law made of stored raw tables, with all that it was made from.
+
+The derived values stand in an evidence table of their own, which names its derivation; the raw tables stay. A
+derivation is a fact (who asked for which law, of which bytes); whether it still holds is concluded from what became
+of its inputs.
+"""
+
+from __future__ import annotations
+
+from typing import Self
+
+from pydantic import Field, model_validator
+
+from specflow.model.base import Code, Document
+from specflow.model.parameter import QuantityIdentity
+
+
+class InputColumn(Document):
+    """A value column that a law read: of which table, and as what (``role``; "value" where a law reads one)."""
+
+    role: str
+    table: Code
+    column: str
+
+
+class Covered(Document):
+    """The range of a condition that derived values speak for: the raw data reached both ends.
+
+    ``largest_gap`` is the largest between neighbouring raw values, in any group of rows. All in ``unit``.
+    """
+
+    dimension: str
+    low: float
+    high: float
+    largest_gap: float
+    unit: str = ""
+
+
+class SettingSaid(Document):
+    """A setting of a law as it was said, or its default."""
+
+    name: str
+    text: str
+
+
+class Derivation(Document):
+    """One law applied to stored tables.
+
+    ``digests`` are those of the input tables at that time, in the order of ``inputs``. ``over`` is the range as said
+    ("frequency: 17.7..20.2 GHz step 0.1 GHz"), ``where`` the rows that were chosen ("polarisation: H"). ``again_of`` is
+    the derivation that this one repeats on newer inputs.
+    """
+
+    id: Code
+    law: str
+    law_version: int = Field(default=1, ge=1)
+    inputs: tuple[Code, ...] = Field(min_length=1)
+    digests: tuple[str, ...]
+    columns: tuple[InputColumn, ...]
+    over: tuple[str, ...] = ()
+    where: tuple[str, ...] = ()
+    settings: tuple[SettingSaid, ...] = ()
+    gives: QuantityIdentity
+    unit: str
+    again_of: Code | None = None
+    by: str = ""
+    at: str = ""
+    reason: str = ""
+    revision: int = 1
+
+    @model_validator(mode="after")
+    def _inputs_are_told_once(self) -> Self:
+        if len(self.digests) != len(self.inputs):
+            raise ValueError(f"{len(self.inputs)} inputs have {len(self.digests)} digests")
+        strange = {column.table for column in self.columns}.symmetric_difference(self.inputs)
+        if strange:
+            raise ValueError(f"inputs and columns do not name the same tables: {', '.join(sorted(strange))}")
+        return self
+
+    def setting(self, name: str) -> str:
+        """Return a setting as it was said, "" when it was not."""
+        return next((one.text for one in self.settings if one.name == name), "")
