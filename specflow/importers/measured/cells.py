@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from functools import cached_property
 
 import numpy as np
@@ -22,10 +22,16 @@ class ColumnCells:
     without a value or an error included.
     """
 
+    grid: Grid = field(repr=False, compare=False)
+    column: int
     first: int
-    values: list[Value]
     numbers: NDArray[np.float64]
     filled: Flags
+
+    @cached_property
+    def values(self) -> list[Value]:
+        """The cells themselves; made when asked for, because columns of plain numbers need no object for each."""
+        return self.grid.column(self.column, self.first, self.first + len(self.numbers))
 
     @cached_property
     def numeric(self) -> Flags:
@@ -44,11 +50,11 @@ class ColumnCells:
 
     def value(self, row: int) -> Value:
         """The cell of one row."""
-        return self.values[row - self.first]
+        return self.grid.value(row, self.column)
 
     def at(self, rows: Rows) -> list[Value]:
         """The cells of the rows asked for, in that order."""
-        if len(rows) == len(self.values):
+        if len(rows) == len(self.numbers):
             return self.values
         return [self.values[place] for place in (rows - self.first).tolist()]
 
@@ -59,22 +65,22 @@ class ColumnCells:
 
 def read_column(grid: Grid, column: int, first: int, stop: int) -> ColumnCells:
     """Read the cells of ``column`` in rows ``first`` up to, not including, ``stop``."""
-    values = grid.column(column, first, stop)
-    if not grid.is_text and set(map(type, values)) == {str}:
-        return _words(grid, column, values, first, stop)
+    if not grid.is_text and stop > first and not grid.has_numbers(column, first, stop):
+        return _words(grid, column, first, stop)
     numbers, odd = grid.column_floats(column, first, stop)
     filled = ~np.isnan(numbers)
     if odd:
         filled[np.array(odd) - first] = True
-    return ColumnCells(first, values, numbers, filled)
+    return ColumnCells(grid, column, first, numbers, filled)
 
 
-def _words(grid: Grid, column: int, values: list[Value], first: int, stop: int) -> ColumnCells:
+def _words(grid: Grid, column: int, first: int, stop: int) -> ColumnCells:
     """A column of a workbook with no number in it: there is nothing to convert."""
+    values = grid.column(column, first, stop)
     filled = np.fromiter(
         (not str(value).isspace() and value != "" for value in values), np.bool_, len(values)
     )
     for run in grid.odd.in_column(column, first, stop):
         if run.cell.kind in (OddKind.ERROR, OddKind.NO_VALUE):
             filled[max(run.first - first, 0) : run.last + 1 - first] = True
-    return ColumnCells(first, values, np.full(len(values), np.nan), filled)
+    return ColumnCells(grid, column, first, np.full(len(values), np.nan), filled)

@@ -133,7 +133,7 @@ def _read_odd(
 ) -> None:
     cells = table.cells(column)
     places = (
-        dict(zip(rows.tolist(), range(len(rows)), strict=True)) if len(rows) != len(cells.values) else None
+        dict(zip(rows.tolist(), range(len(rows)), strict=True)) if len(rows) != len(cells.numbers) else None
     )
     decimal_comma = (
         (table.grid.decimal == "," if table.grid.decimal else None) if table.grid.is_text else None

@@ -22,7 +22,6 @@ from specflow.importers.readers.grid import (
     OddCells,
     OddKind,
     OddRun,
-    Value,
     address,
     column_letter,
     column_number,
@@ -32,6 +31,7 @@ from specflow.importers.readers.grid import (
 )
 from specflow.importers.readers.inspection import comments, formulas
 from specflow.importers.readers.source import FileFingerprint, Source, read_source
+from specflow.importers.readers.stores import Value
 from specflow.importers.readers.xlsx import read_xlsx
 
 __all__ = [

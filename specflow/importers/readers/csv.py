@@ -18,8 +18,9 @@ from specflow.importers.readers.delimiter import (
     split_to_width,
 )
 from specflow.importers.readers.encoding import decode
-from specflow.importers.readers.grid import Grid, Value
+from specflow.importers.readers.grid import Grid
 from specflow.importers.readers.source import Source
+from specflow.importers.readers.stores import Value
 
 MAX_FIELDS = 16_000_000
 

@@ -1,15 +1,15 @@
 """The grid: what a reader gives for one sheet, with true addresses and the oddities a bare value does not show.
 
 Rows and columns are the 1-based coordinates of the sheet everywhere on the surface (``C17`` is row 17, column 3);
-for a csv file the row is the line number of the file. The cells themselves are plain Python values in plain lists,
-because a measurement workbook has a million of them.
+for a csv file the row is the line number of the file. The cells are plain Python values in plain lists, or, where a
+sheet has millions of them, in a CellStore (``stores``), which is asked by column.
 """
 
 from __future__ import annotations
 
 import re
 from bisect import bisect_right
-from collections.abc import Iterable, Iterator, Mapping
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
 from datetime import date, datetime, time, timedelta
 from enum import StrEnum
@@ -19,11 +19,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.errors import FileError
+from specflow.importers.readers.stores import CellStore, Value
 
 T = TypeVar("T")
-
-Value = str | float | int | bool | datetime | date | time | timedelta
-"""What a cell can hold; an empty cell is ``""``."""
 
 _NUMBER = re.compile(r"[+-]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][+-]?[0-9]+)?")
 _LOOKS_NUMERIC = re.compile(
@@ -120,7 +118,7 @@ class Grid:
     """
 
     name: str
-    rows: list[list[Value]]
+    rows: Sequence[list[Value]]
     file: str = ""
     first_row: int = 1
     first_column: int = 1
@@ -142,14 +140,18 @@ class Grid:
     @property
     def last_column(self) -> int:
         """Column number of the last column of the widest row."""
-        return self.first_column + max(map(len, self.rows), default=0) - 1
+        rows = self.rows
+        width = rows.width if isinstance(rows, CellStore) else max(map(len, rows), default=0)
+        return self.first_column + width - 1
 
     def value(self, row: int, column: int) -> Value:
         """The cell at (row, column); ``""`` for an empty cell and for every place outside the used range."""
         if row < self.first_row or column < self.first_column or row > self.last_row:
             return ""
-        cells = self.rows[row - self.first_row]
         place = column - self.first_column
+        if isinstance(self.rows, CellStore):
+            return self.rows.value(row - self.first_row, place)
+        cells = self.rows[row - self.first_row]
         return cells[place] if place < len(cells) else ""
 
     def row(self, row: int) -> list[Value]:
@@ -160,18 +162,26 @@ class Grid:
 
     def column(self, column: int, start: int, stop: int) -> list[Value]:
         """The cells of one column in rows ``start`` up to, not including, ``stop``."""
-        place = column - self.first_column
-        rows = self.rows[max(start - self.first_row, 0) : max(stop - self.first_row, 0)]
-        if place < 0:
-            inside: list[Value] = [""] * len(rows)
-        else:
-            try:
-                inside = [cells[place] for cells in rows]
-            except IndexError:
-                inside = [cells[place] if place < len(cells) else "" for cells in rows]
-        above = min(max(self.first_row - start, 0), max(stop - start, 0))
-        below = max(stop - start, 0) - above - len(inside)
+        first, last, above, below = self._inside(start, stop)
+        inside = _column_of(self.rows, column - self.first_column, first, last)
         return [""] * above + inside + [""] * below
+
+    def has_numbers(self, column: int, start: int, stop: int) -> bool:
+        """Whether a cell of one column, in rows ``start`` up to ``stop``, is something else than text: a workbook's
+        number, date or truth value. Cells of a text file are text until they are read."""
+        first, last, _, _ = self._inside(start, stop)
+        place = column - self.first_column
+        if isinstance(self.rows, CellStore):
+            return place >= 0 and self.rows.has_numbers(place, first, last)
+        return not set(map(type, _column_of(self.rows, place, first, last))) <= {str}
+
+    def _inside(self, start: int, stop: int) -> tuple[int, int, int, int]:
+        """Rows ``start`` up to ``stop`` as places in ``rows``, and how many of them lie above and below the grid."""
+        size, count = max(stop - start, 0), len(self.rows)
+        first = min(max(start - self.first_row, 0), count)
+        last = max(min(stop - self.first_row, count), first)
+        above = min(max(self.first_row - start, 0), size)
+        return first, last, above, size - above - (last - first)
 
     def column_floats(self, column: int, start: int, stop: int) -> tuple[NDArray[np.float64], list[int]]:
         """The numbers of one column in rows ``start`` up to, not including, ``stop``.
@@ -180,10 +190,9 @@ class Grid:
         holds something that is not a plain finite number: text, date, boolean, error, formula without a value, NaN,
         infinity. Blank cells are NaN and are not listed. Number formats (percent, unit) are not applied: ask ``odd``.
         """
-        cells = self.column(column, start, stop)
-        numbers = _text_floats(cells, self.decimal) if self.is_text else _number_floats(cells)
+        numbers, other = self._plain_numbers(column, start, stop)
         finite = np.isfinite(numbers)
-        bad = {start + int(place) for place in np.flatnonzero(~finite) if not is_blank(cells[place])}
+        bad = set((np.flatnonzero(other) + start).tolist())
         for run in self.odd.in_column(column, start, stop):
             if run.cell.kind in (OddKind.ERROR, OddKind.NO_VALUE):
                 rows = range(max(run.first, start), min(run.last + 1, stop))
@@ -191,6 +200,27 @@ class Grid:
                 finite[rows.start - start : rows.stop - start] = False
         numbers[~finite] = np.nan
         return numbers, sorted(bad)
+
+    def _plain_numbers(
+        self, column: int, start: int, stop: int
+    ) -> tuple[NDArray[np.float64], NDArray[np.bool_]]:
+        """The numbers of a column, and which of its cells hold something else."""
+        if isinstance(self.rows, CellStore):
+            first, last, above, below = self._inside(start, stop)
+            place = column - self.first_column
+            known = self.rows.numbers(place, first, last) if place >= 0 else None
+            if known is not None:
+                numbers, other = known
+                if above or below:
+                    numbers = np.pad(numbers, (above, below), constant_values=np.nan)
+                    other = np.pad(other, (above, below))
+                return numbers, other
+        cells = self.column(column, start, stop)
+        numbers = _text_floats(cells, self.decimal) if self.is_text else _number_floats(cells)
+        other = np.zeros(len(cells), bool)
+        for here in np.flatnonzero(~np.isfinite(numbers)).tolist():
+            other[here] = not is_blank(cells[here])
+        return numbers, other
 
     def oddities(self, row: int, column: int) -> list[OddCell]:
         """Everything odd about one cell: of its value, its format, its visibility and its merged range."""
@@ -266,6 +296,19 @@ def is_blank(value: Value) -> bool:
 def looks_numeric(text: str) -> bool:
     """The text is a number as people write them: sign, digits, separators, exponent, perhaps a percent sign."""
     return _LOOKS_NUMERIC.fullmatch(text.strip()) is not None
+
+
+def _column_of(rows: Sequence[list[Value]], place: int, first: int, last: int) -> list[Value]:
+    """The cells at ``place`` of rows ``first`` up to ``last``; empty ones where a row is shorter."""
+    if place < 0:
+        return [""] * (last - first)
+    if isinstance(rows, CellStore):
+        return rows.column(place, first, last)
+    part = rows[first:last]
+    try:
+        return [cells[place] for cells in part]
+    except IndexError:
+        return [cells[place] if place < len(cells) else "" for cells in part]
 
 
 def _number_floats(cells: list[Value]) -> NDArray[np.float64]:

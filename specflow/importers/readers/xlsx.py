@@ -9,9 +9,10 @@ from python_calamine import CalamineError, CalamineWorkbook, SheetVisibleEnum
 from specflow.errors import FileError
 from specflow.importers.readers.archive import Archive
 from specflow.importers.readers.book import read_book
-from specflow.importers.readers.grid import CellRange, Grid, OddCells, OddKind, Value, address
+from specflow.importers.readers.grid import CellRange, Grid, OddCells, OddKind, address
 from specflow.importers.readers.sheet_scan import SheetScan, scan_sheet
 from specflow.importers.readers.source import Source
+from specflow.importers.readers.stores import Value
 from specflow.importers.readers.styles import Styles
 
 MAX_CELLS = 16_000_000

@@ -1,0 +1,139 @@
+"""Where a grid keeps its cells when they are many: column by column in arrays instead of row by row in lists.
+
+A Python list of a million rows of twelve numbers takes most of a gigabyte; the same numbers in arrays take 96 MB. A
+store is a sequence of rows, so that whoever walks over rows may, and answers for whole columns without making a Python
+object of each cell.
+"""
+
+from __future__ import annotations
+
+from abc import abstractmethod
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
+from datetime import date, datetime, time, timedelta
+from typing import overload
+
+import numpy as np
+from numpy.typing import NDArray
+
+Value = str | float | int | bool | datetime | date | time | timedelta
+"""What a cell can hold; an empty cell is ``""``."""
+
+Floats = NDArray[np.float64]
+Codes = NDArray[np.int32]
+Flags = NDArray[np.bool_]
+
+
+class CellStore(Sequence[list[Value]]):
+    """Rows of cells; ``row`` and ``place`` count from 0. ``width`` is the number of cells of the longest row."""
+
+    width: int
+
+    @abstractmethod
+    def __len__(self) -> int: ...
+
+    @abstractmethod
+    def cells_of(self, row: int) -> list[Value]:
+        """The cells of one row."""
+
+    @abstractmethod
+    def value(self, row: int, place: int) -> Value:
+        """One cell; ``""`` behind the end of the row."""
+
+    @abstractmethod
+    def column(self, place: int, start: int, stop: int) -> list[Value]:
+        """The cells of rows ``start`` up to, not including, ``stop`` in one column; all inside the store."""
+
+    @abstractmethod
+    def numbers(self, place: int, start: int, stop: int) -> tuple[Floats, Flags] | None:
+        """The plain numbers of a column as a copy, NaN elsewhere, and which cells hold something else; None where
+        the store does not know without looking at each cell."""
+
+    @abstractmethod
+    def has_numbers(self, place: int, start: int, stop: int) -> bool:
+        """Whether a cell of these rows may be something else than text."""
+
+    def __iter__(self) -> Iterator[list[Value]]:
+        return map(self.cells_of, range(len(self)))
+
+    @overload
+    def __getitem__(self, index: int) -> list[Value]: ...
+    @overload
+    def __getitem__(self, index: slice) -> list[list[Value]]: ...
+    def __getitem__(self, index: int | slice) -> list[Value] | list[list[Value]]:
+        if isinstance(index, slice):
+            return [self.cells_of(row) for row in range(*index.indices(len(self)))]
+        row = index + len(self) if index < 0 else index
+        if not 0 <= row < len(self):
+            raise IndexError("no such row")
+        return self.cells_of(row)
+
+
+@dataclass(frozen=True, slots=True)
+class TypedColumn:
+    """One column: ``numbers`` with NaN where a cell is no number (None: there is none), ``codes`` into the words of the
+    store, -1 where a cell is no word (None: there is none). A cell that is neither is empty."""
+
+    numbers: Floats | None
+    codes: Codes | None
+
+
+class TypedColumns(CellStore):
+    """Cells of a sheet in typed columns; ``words`` are all cells that are no numbers, each once."""
+
+    def __init__(self, columns: Sequence[TypedColumn], rows: int, words: Sequence[Value]) -> None:
+        self.width = len(columns)
+        self._columns = columns
+        self._rows = rows
+        self._words = words
+        self._blank = np.array([isinstance(word, str) and not word.strip() for word in words] + [True])
+        self._text = np.array([isinstance(word, str) for word in words] + [True])
+
+    def __len__(self) -> int:
+        return self._rows
+
+    def cells_of(self, row: int) -> list[Value]:
+        return [self.value(row, place) for place in range(self.width)]
+
+    def value(self, row: int, place: int) -> Value:
+        if place >= self.width:
+            return ""
+        column = self._columns[place]
+        if column.codes is not None and (code := int(column.codes[row])) >= 0:
+            return self._words[code]
+        if column.numbers is None:
+            return ""
+        number = float(column.numbers[row])
+        return "" if number != number else number
+
+    def column(self, place: int, start: int, stop: int) -> list[Value]:
+        if place >= self.width:
+            return [""] * (stop - start)
+        column = self._columns[place]
+        if column.numbers is None:
+            cells: list[Value] = [""] * (stop - start)
+        else:
+            numbers = column.numbers[start:stop]
+            cells = numbers.tolist()
+            for empty in np.flatnonzero(np.isnan(numbers)).tolist():
+                cells[empty] = ""
+        if column.codes is not None:
+            codes = column.codes[start:stop]
+            for here in np.flatnonzero(codes >= 0).tolist():
+                cells[here] = self._words[codes[here]]
+        return cells
+
+    def numbers(self, place: int, start: int, stop: int) -> tuple[Floats, Flags]:
+        count = stop - start
+        column = self._columns[place] if place < self.width else TypedColumn(None, None)
+        numbers = np.full(count, np.nan) if column.numbers is None else column.numbers[start:stop].copy()
+        other = np.isinf(numbers)
+        if column.codes is not None:
+            other |= ~self._blank[column.codes[start:stop]]
+        return numbers, other
+
+    def has_numbers(self, place: int, start: int, stop: int) -> bool:
+        column = self._columns[place] if place < self.width else TypedColumn(None, None)
+        if column.numbers is not None and not np.isnan(column.numbers[start:stop]).all():
+            return True
+        return column.codes is not None and not bool(self._text[column.codes[start:stop]].all())
