@@ -21,7 +21,7 @@ from specflow.importers.measured.result import (
     Role,
 )
 from specflow.importers.readers import Grid, GridFile, open_grids, sheet
-from specflow.model.evidence import EvidenceFile, FileKind
+from specflow.model.evidence import EvidenceFile, FileKind, HowRead
 from specflow.model.finding import Finding, Severity
 from specflow.model.origin import Origin
 from specflow.model.snapshot import Snapshot
@@ -86,10 +86,23 @@ def _read(
 ) -> MeasuredTable:
     if include_hidden_rows:
         located = replace(located, mapping=replace(located.mapping, include_hidden_rows=True))
-    table = read_table(located, context, person)
+    table = _with_how_read(read_table(located, context, person), located, person)
     if not located.mapping_from:
         return table
     return replace(table, mapping=write_mapping(replace(located.mapping, layout=located.key)))
+
+
+def _with_how_read(table: MeasuredTable, located: LocatedTable, person: Mapping[str, str]) -> MeasuredTable:
+    if table.document is None:
+        return table
+    how = HowRead(
+        importer=IMPORTER_VERSION,
+        layout=located.key,
+        place=table.place,
+        stated=tuple(sorted(person.items())),
+        include_hidden_rows=located.mapping.include_hidden_rows,
+    )
+    return replace(table, document=table.document.model_copy(update={"how_read": how}))
 
 
 def _chosen(file: GridFile, sheets: Sequence[str], skipped: list[str]) -> list[Grid]:

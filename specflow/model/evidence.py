@@ -14,6 +14,7 @@ from typing import Literal
 
 import numpy as np
 from numpy.typing import NDArray
+from pydantic import Field
 
 from specflow.model.base import Code, Document
 from specflow.model.columns import Columns, TextColumn
@@ -34,7 +35,11 @@ class FileKind(StrEnum):
 
 
 class EvidenceFile(Document):
-    """A file that was received; the id is given by the project, the hash says which bytes it was."""
+    """A file that was received; the id is given by the project, the hash says which bytes it was.
+
+    ``path`` is where it lay, from the folder of the project file, with ``/`` ("" where that says nothing to others);
+    ``kept``: the project holds a copy of its bytes.
+    """
 
     id: Code
     name: str
@@ -49,6 +54,8 @@ class EvidenceFile(Document):
     authoriser: str = ""
     importer_version: str = ""
     note: str = ""
+    path: str = ""
+    kept: bool = False
     revision: int = 1
 
 
@@ -88,6 +95,21 @@ class ConditionColumn(Document):
     column: int | None = None
     header: str = ""
     stated_by: str = "column"
+    unit_from: str = ""
+
+
+class HowRead(Document):
+    """All that is needed to read a table again as it was read, beside its file and its mapping.
+
+    ``importer`` is the version of what read it; ``layout`` the key of its layout and ``place`` its cells ("A5:D17");
+    ``stated`` is what the person said for the whole file (name, value).
+    """
+
+    importer: str = ""
+    layout: str = ""
+    place: str = ""
+    stated: tuple[tuple[str, str], ...] = ()
+    include_hidden_rows: bool = False
 
 
 class EvidenceTable(Document):
@@ -127,6 +149,7 @@ class EvidenceTable(Document):
     accepted_at: str = ""
     provisional: bool = False
     left_out: tuple[LeftOut, ...] = ()
+    how_read: HowRead = Field(default_factory=HowRead)
     derivation: Code | None = None
     covers: tuple[Covered, ...] = ()
     revision: int = 1

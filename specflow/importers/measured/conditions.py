@@ -144,6 +144,7 @@ def _document(meaning: ColumnMeaning, unit: str) -> ConditionColumn:
         unit=unit,
         column=meaning.column,
         header=meaning.header.text,
+        unit_from=meaning.unit_from,
     )
 
 

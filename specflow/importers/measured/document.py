@@ -22,7 +22,7 @@ from specflow.model.requirement import Method, Requirement, Stage
 PROVISIONAL_TABLE, PROVISIONAL_FILE = "EV-0", "F-0"
 
 _NOT_CONTENT = {"id", "file", "digest", "mapping", "mapping_revision", "accepted_by", "accepted_at", "provisional",
-                "revision", "left_out", "title", "sheet", "derivation", "covers"}  # fmt: skip
+                "revision", "left_out", "title", "sheet", "how_read", "derivation", "covers"}  # fmt: skip
 
 
 @dataclass(frozen=True, slots=True)
