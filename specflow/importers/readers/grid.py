@@ -10,7 +10,7 @@ from __future__ import annotations
 import re
 from bisect import bisect_right
 from collections.abc import Iterable, Iterator, Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from datetime import date, datetime, time, timedelta
 from enum import StrEnum
 from typing import TypeVar
@@ -103,6 +103,19 @@ class CellRange:
     def __contains__(self, cell: tuple[int, int]) -> bool:
         return self.first_row <= cell[0] <= self.last_row and self.first_column <= cell[1] <= self.last_column
 
+    def touches(self, other: CellRange) -> bool:
+        """Whether the two have a cell in common."""
+        return (
+            self.first_row <= other.last_row
+            and other.first_row <= self.last_row
+            and self.first_column <= other.last_column
+            and other.first_column <= self.last_column
+        )
+
+    def turn(self) -> CellRange:
+        """The rectangle with rows and columns changed."""
+        return CellRange(self.first_column, self.first_row, self.last_column, self.last_row)
+
     def __str__(self) -> str:
         return f"{address(self.first_row, self.first_column)}:{address(self.last_row, self.last_column)}"
 
@@ -114,7 +127,8 @@ class Grid:
     ``rows[0][0]`` is the cell at (``first_row``, ``first_column``); rows may be of unequal length. ``is_text`` says
     that all cells are text as written (csv); ``decimal`` is then the decimal mark found, ``""`` when it is ambiguous.
     ``comment_rows`` are csv lines that began with a comment mark, which is taken off. ``notes`` say what the reader
-    did or saw on the way.
+    did or saw on the way. ``turned`` says that rows and columns have changed places (``turn``): ``address`` and
+    ``column_name`` still give the true place.
     """
 
     name: str
@@ -131,6 +145,7 @@ class Grid:
     is_text: bool = False
     decimal: str = "."
     notes: tuple[str, ...] = ()
+    turned: bool = False
 
     @property
     def last_row(self) -> int:
@@ -242,11 +257,58 @@ class Grid:
         """The merged range that holds the cell; its value stands in the upper left cell, the anchor."""
         return next((area for area in self.merged if (row, column) in area), None)
 
+    def address(self, row: int, column: int) -> str:
+        """The true address of a cell: ``C17``, also where the grid is turned."""
+        return address(column, row) if self.turned else address(row, column)
+
+    def column_name(self, column: int) -> str:
+        """What a column is called: its letter; the number of the true row where the grid is turned."""
+        return str(column) if self.turned else column_letter(column)
+
+    def cut(self, area: CellRange) -> Grid:
+        """The cells of an area, at the same coordinates."""
+        first = max(area.first_column - self.first_column, 0)
+        stop = max(area.last_column + 1 - self.first_column, 0)
+        top = max(area.first_row - self.first_row, 0)
+        rows = self.rows[top : max(area.last_row + 1 - self.first_row, 0)]
+        return replace(
+            self,
+            rows=[cells[first:stop] for cells in rows],
+            first_row=self.first_row + top,
+            first_column=self.first_column + first,
+            merged=tuple(one for one in self.merged if one.touches(area)),
+            comment_rows=frozenset(row for row in self.comment_rows if area.first_row <= row <= area.last_row),
+        )
+
+    def turn(self) -> Grid:
+        """The grid with rows and columns changed; what is said of columns then is said of true rows."""
+        width = max(map(len, self.rows), default=0)
+        rows: list[list[Value]] = [
+            [cells[place] if place < len(cells) else "" for cells in self.rows] for place in range(width)
+        ]
+        runs = [
+            OddRun(row, run.column, run.column, run.cell)
+            for run in self.odd
+            for row in range(max(run.first, self.first_row), min(run.last, self.last_row) + 1)
+        ]
+        return replace(
+            self,
+            rows=rows,
+            first_row=self.first_column,
+            first_column=self.first_row,
+            odd=OddCells(runs),
+            hidden_rows=self.hidden_columns,
+            hidden_columns=self.hidden_rows,
+            merged=tuple(area.turn() for area in self.merged),
+            comment_rows=frozenset(),
+            turned=not self.turned,
+        )
+
     def where(self, row: int | None = None, column: int | None = None) -> str:
         """The place as people write it: file, sheet, cell."""
         parts = [self.file, self.name if self.name != self.file else ""]
         if row is not None:
-            parts.append(f"row {row}" if column is None else address(row, column))
+            parts.append(f"row {row}" if column is None else self.address(row, column))
         return ", ".join(part for part in parts if part)
 
 
