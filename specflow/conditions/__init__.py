@@ -9,9 +9,9 @@ it in words. Limits and verdicts do not live here: a caller says which records a
     proved = proves(points, matching, good)           # once an item, ``good`` marking its records
 """
 
-from specflow.conditions.assemble import make_conditions_set, read_combination, read_exclusions
+from typing import TYPE_CHECKING
+
 from specflow.conditions.dictionary import DIRECTION_PAIRS, KNOWN_DIMENSIONS, Comparison, KnownDimension
-from specflow.conditions.difference import conditions_difference
 from specflow.conditions.dimensions import (
     find_dimension,
     is_unlocated_temperature,
@@ -19,10 +19,7 @@ from specflow.conditions.dimensions import (
     unlocated_temperature_hint,
 )
 from specflow.conditions.expand import MOST_POINTS, compile_points, expand, point_count
-from specflow.conditions.maps import map_columns, parse_map_entry, unmap_columns
 from specflow.conditions.match import Matching, match, unstated_conditions
-from specflow.conditions.mismatch import explain_mismatch, missing_words
-from specflow.conditions.parse import ReadDimension, parse_dimension, read_dimension, read_rule
 from specflow.conditions.points import Points
 from specflow.conditions.proof import proves, range_gaps
 from specflow.conditions.words import (
@@ -31,6 +28,34 @@ from specflow.conditions.words import (
     point_words,
     set_words,
     value_words,
+)
+from specflow.late import late_names
+
+if TYPE_CHECKING:
+    from specflow.conditions.assemble import make_conditions_set, read_combination, read_exclusions
+    from specflow.conditions.difference import conditions_difference
+    from specflow.conditions.maps import map_columns, parse_map_entry, unmap_columns
+    from specflow.conditions.mismatch import explain_mismatch, missing_words
+    from specflow.conditions.parse import ReadDimension, parse_dimension, read_dimension, read_rule
+
+# Matching reads no text and explains nothing: status does not wait for what does.
+__getattr__ = late_names(
+    __name__,
+    {
+        "ReadDimension": "parse",
+        "conditions_difference": "difference",
+        "explain_mismatch": "mismatch",
+        "make_conditions_set": "assemble",
+        "map_columns": "maps",
+        "missing_words": "mismatch",
+        "parse_dimension": "parse",
+        "parse_map_entry": "maps",
+        "read_combination": "assemble",
+        "read_dimension": "parse",
+        "read_exclusions": "assemble",
+        "read_rule": "parse",
+        "unmap_columns": "maps",
+    },
 )
 
 __all__ = [

@@ -9,7 +9,6 @@ from functools import reduce
 import numpy as np
 
 from specflow.limits.inputs import Flags
-from specflow.limits.text import node_text
 from specflow.limits.tree import tree_units, undefined_in
 from specflow.model.limit import Alternatives, Gate, Limit, LimitNode, LimitState, OfQuantity, Rule
 
@@ -41,6 +40,9 @@ def _named(node: LimitNode) -> tuple[str, LimitNode]:
 
 
 def _member(limit: Limit, node: LimitNode, quantity: str) -> Alternative:
+    # Few limits have alternatives, and writing a tree as text takes long to load.
+    from specflow.limits.text import node_text
+
     units = tree_units(node)
     state = LimitState.TBD if undefined_in(node) else limit.state
     alone = limit.model_copy(

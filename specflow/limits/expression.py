@@ -9,7 +9,6 @@ from numpy.typing import NDArray
 
 from specflow.errors import ExpressionError
 from specflow.limits.expression_shape import expression_names, is_condition
-from specflow.limits.expression_text import expression_text, expression_words
 from specflow.limits.expression_value import operand, truth
 from specflow.limits.inputs import Flags, Inputs
 from specflow.model.columns import Columns, TextColumn
@@ -23,8 +22,6 @@ __all__ = [
     "evaluate_condition",
     "evaluate_expression",
     "expression_names",
-    "expression_text",
-    "expression_words",
     "is_condition",
     "parse_condition",
     "parse_expression",

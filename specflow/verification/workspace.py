@@ -16,7 +16,6 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.conditions.expand import expand
-from specflow.conditions.maps import unmap_columns
 from specflow.conditions.match import Matching, match
 from specflow.conditions.points import Points
 from specflow.errors import ConditionsError, UnitError
@@ -175,6 +174,9 @@ class Workspace:
         how = self.mapping.of_requirement(requirement)
         if how is None:
             return records.conditions
+        # Reading and solving maps takes long to load; few requirements are proved through one.
+        from specflow.conditions.maps import unmap_columns
+
         key = id(how), id(records.conditions)
         known = self._mapped.get(key)
         if known is None:
