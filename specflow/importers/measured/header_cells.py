@@ -6,7 +6,7 @@ import re
 from dataclasses import dataclass, replace
 
 from specflow.importers.measured.header_text import known_unit, read_header, without_coverage
-from specflow.importers.readers import Grid, Value, address, is_blank, looks_numeric
+from specflow.importers.readers import Grid, Value, address, column_letter, is_blank, looks_numeric
 
 _NO_UNIT = ("", "-", "—", "–", "n/a")
 
@@ -15,7 +15,8 @@ _NO_UNIT = ("", "-", "—", "–", "n/a")
 class HeaderCell:
     """One header: its column, its text as written, and the unit of a units row below it ("" without one).
 
-    ``k`` is a coverage factor that stands beside that unit.
+    ``k`` is a coverage factor that stands beside that unit; ``unit_from`` says where the unit stands when that is not
+    the units row. ``turned``: rows and columns of its grid have changed places.
     """
 
     column: int
@@ -24,11 +25,18 @@ class HeaderCell:
     unit: str = ""
     unit_row: int | None = None
     k: float | None = None
+    unit_from: str = ""
+    turned: bool = False
 
     @property
     def cell(self) -> str:
-        """Its address."""
-        return address(self.row, self.column)
+        """Its true address."""
+        return address(self.column, self.row) if self.turned else address(self.row, self.column)
+
+    @property
+    def letter(self) -> str:
+        """The name of its column: its letter; the number of the true row where the table is turned."""
+        return str(self.column) if self.turned else column_letter(self.column)
 
 
 def has_second_row(grid: Grid, row: int) -> bool:
@@ -64,7 +72,7 @@ def read_headers(grid: Grid, row: int, count: int) -> tuple[HeaderCell, ...]:
             else:
                 text = _joined(text, more)
         if text:
-            found.append(HeaderCell(column, row, text))
+            found.append(HeaderCell(column, row, text, turned=grid.turned))
     return tuple(found)
 
 

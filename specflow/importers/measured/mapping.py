@@ -7,97 +7,30 @@ from __future__ import annotations
 
 import re
 import tomllib
-from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field, fields
+from collections.abc import Mapping
+from dataclasses import fields
 from typing import Any
 
 from specflow.errors import FileError
-from specflow.importers.measured.header_text import header_key
+from specflow.importers.measured.area import read_area
+from specflow.importers.measured.mapping_parts import (
+    AxisMapping,
+    ColumnMapping,
+    LayoutMapping,
+    LongMapping,
+    MatrixMapping,
+    PivotMapping,
+)
 from specflow.importers.measured.result import Role
 from specflow.model.evidence import SpectrumKind
 
+__all__ = ["FORMAT", "ROLES", "ColumnMapping", "LayoutMapping", "PivotMapping", "read_mappings", "write_mapping"]
+
 FORMAT = 1
 
+_PARTS = ("stated", "columns", "pivots", "long", "matrix")
+
 ROLES = tuple(role.value for role in Role if role not in (Role.UNRESOLVED, Role.PIVOT, Role.STATED))
-
-
-@dataclass(frozen=True, slots=True)
-class ColumnMapping:
-    """How one column is read. Empty means: as recognised. ``of`` is the header of the column that an uncertainty is of.
-
-    ``k`` is the coverage factor (1: a standard uncertainty); ``fill_down`` says that a blank cell means the one above.
-    """
-
-    header: str = ""
-    column: str = ""
-    role: str = ""
-    parameter: str = ""
-    plane: str = ""
-    statistic: str = ""
-    polarisation: str = ""
-    unit: str = ""
-    bandwidth: str = ""
-    spectrum: str = ""
-    dimension: str = ""
-    of: str = ""
-    k: float | None = None
-    fill_down: bool = False
-
-    def is_about(self, text: str, letter: str) -> bool:
-        """Whether this entry speaks of the column with this header (and letter, where the entry gives one)."""
-        if self.column and self.column.upper() != letter:
-            return False
-        return not self.header or header_key(self.header) == header_key(text)
-
-
-@dataclass(frozen=True, slots=True)
-class PivotMapping:
-    """Columns that are one quantity at several conditions.
-
-    ``header`` is a pattern like ``{polarisation} @ {frequency} MHz``. The names in braces are dimensions; ``units``
-    gives the unit of the numeric ones.
-    """
-
-    header: str
-    parameter: str
-    unit: str
-    units: Mapping[str, str] = field(default_factory=dict)
-    plane: str = ""
-    statistic: str = ""
-    polarisation: str = ""
-    bandwidth: str = ""
-    spectrum: str = ""
-
-    def pattern(self) -> re.Pattern[str]:
-        """Return the expression that the headers match; blanks do not matter."""
-        pieces = []
-        for piece in re.split(r"(\{\w+\})", " ".join(self.header.split())):
-            if re.fullmatch(r"\{\w+\}", piece):
-                pieces.append(f"(?P<{piece[1:-1]}>.+?)")
-            else:
-                pieces.append(re.escape(piece).replace(r"\ ", r"\s*"))
-        return re.compile("".join(pieces), re.IGNORECASE)
-
-
-@dataclass(frozen=True, slots=True)
-class LayoutMapping:
-    """The mapping of one layout."""
-
-    layout: str = ""
-    title: str = ""
-    sheet: str = ""
-    skip: bool = False
-    header_rows: int = 1
-    include_hidden_rows: bool = False
-    keep_summary_rows: bool = False
-    keep_placeholders: bool = False
-    stated: Mapping[str, str] = field(default_factory=dict)
-    columns: Sequence[ColumnMapping] = ()
-    pivot: PivotMapping | None = None
-
-    def column(self, text: str, letter: str) -> ColumnMapping | None:
-        """Return the entry about a column."""
-        return next((one for one in self.columns if one.is_about(text, letter)), None)
 
 
 _STATED = ("block", "method", "stage", "requirement", "set_up", "performer", "procedure", "procedure_revision", "item",
@@ -126,13 +59,60 @@ def _layout(data: dict[str, Any], where: str) -> LayoutMapping:
         _column(entry, f"{where}, column {number}")
         for number, entry in enumerate(_entries_of(data, "column", where), 1)
     ]
-    pivot = _part_of(data, "pivot", where)
+    single = data.pop("pivot", [])
+    data["pivot"] = single if isinstance(single, list) else [single]
+    pivots = [_pivot(entry, where) for entry in _entries_of(data, "pivot", where)]
+    long, matrix = _part_of(data, "long", where), _part_of(data, "matrix", where)
     stated = {key: str(value) for key, value in _part_of(data, "stated", where).items()}
     stated |= {key: str(data.pop(key)) for key in _STATED if key in data}
-    _check(LayoutMapping, data, where, but=("columns", "stated", "pivot"))
+    _check(LayoutMapping, data, where, but=("columns", "stated", "pivots", "long", "matrix"))
+    _check_area(data, where)
     return LayoutMapping(
-        **data, stated=stated, columns=tuple(columns), pivot=_pivot(pivot, where) if pivot else None
+        **data,
+        stated=stated,
+        columns=tuple(columns),
+        pivots=tuple(pivots),
+        long=_long(long, where) if long else None,
+        matrix=_matrix(matrix, where) if matrix else None,
     )
+
+
+def _check_area(data: Mapping[str, Any], where: str) -> None:
+    if "area" in data and read_area(data["area"]) is None:
+        raise FileError(
+            f"area = {data['area']!r} is no area of a sheet", where=where, hint='write area = "K6:L10" or "A137:B"'
+        )
+    if not data.get("area") and data.get("header_rows") == 0:
+        raise FileError("header_rows = 0 without an area", where=where, hint='write area = "K6:L10", too')
+
+
+def _long(data: dict[str, Any], where: str) -> LongMapping:
+    where = f"{where}, long"
+    _check(LongMapping, data, where)
+    _demand(data, ("parameter", "value"), where)
+    return LongMapping(**data)
+
+
+def _matrix(data: dict[str, Any], where: str) -> MatrixMapping:
+    where = f"{where}, matrix"
+    axes = {}
+    for name in ("rows", "columns"):
+        part = _part_of(data, name, where)
+        _check(AxisMapping, part, f"{where}, {name}")
+        _demand(part, ("dimension", "start", "step"), f"{where}, {name}")
+        if not part["step"]:
+            raise FileError("a step of 0", where=f"{where}, {name}", hint="say how far the lines lie apart")
+        axes[name] = AxisMapping(**part | {"start": float(part["start"]), "step": float(part["step"])})
+    _check(MatrixMapping, data, where, but=("rows", "columns"))
+    _demand(data, ("parameter", "unit"), where)
+    _check_spectrum(data, where)
+    return MatrixMapping(**data, **axes)
+
+
+def _demand(data: Mapping[str, Any], names: tuple[str, ...], where: str) -> None:
+    for name in names:
+        if data.get(name, "") == "":
+            raise FileError(f"{name} is missing", where=where, hint=f"write {name} = ...")
 
 
 def _entries_of(data: dict[str, Any], key: str, where: str) -> list[dict[str, Any]]:
@@ -157,8 +137,11 @@ def _column(data: dict[str, Any], where: str) -> ColumnMapping:
     if role and role not in ROLES:
         raise FileError(f"{role!r} is no role of a column", where=where, hint=f"one of: {', '.join(ROLES)}")
     _check_spectrum(data, where)
-    if "k" in data:
-        data["k"] = float(data["k"])
+    for key in ("k", "scale"):
+        if key in data:
+            data[key] = float(data[key])
+            if not data[key] > 0:
+                raise FileError(f"{key} = {data[key]:g} is no factor", where=where, hint="a number above 0")
     return ColumnMapping(**data)
 
 
@@ -194,13 +177,18 @@ def _check(kind: type[Any], data: Mapping[str, Any], where: str, but: tuple[str,
         expected = known[key].split(" ")[0].split("[")[0]
         right = {
             "bool": isinstance(value, bool),
-            "int": isinstance(value, int) and not isinstance(value, bool) and value > 0,
-            "float": isinstance(value, int | float) and not isinstance(value, bool) and value > 0,
+            "int": isinstance(value, int) and not isinstance(value, bool) and value >= 0,
+            "float": isinstance(value, int | float) and not isinstance(value, bool),
             "str": isinstance(value, str),
             "Mapping": isinstance(value, dict) and all(isinstance(one, str) for one in value.values()),
+            "Sequence": isinstance(value, list) and all(_is_one_of(one, str(known[key])) for one in value),
         }
         if not right.get(expected, True):
             raise FileError(f"{key} = {value!r} is not what belongs there", where=where, hint=f"a {expected}")
+
+
+def _is_one_of(value: object, kind: str) -> bool:
+    return isinstance(value, int) and not isinstance(value, bool) if "[int]" in kind else isinstance(value, str)
 
 
 def _refuse_unknown(data: Mapping[str, Any], known: tuple[str, ...], where: str) -> None:
@@ -212,25 +200,17 @@ def _refuse_unknown(data: Mapping[str, Any], known: tuple[str, ...], where: str)
 
 def write_mapping(mapping: LayoutMapping, reasons: Mapping[str, str] | None = None) -> str:
     """Return one layout as TOML; ``reasons`` are put as comments over the columns, by header."""
-    lines = ["[[table]]"]
-    for name in (
-        "layout",
-        "title",
-        "sheet",
-        "skip",
-        "header_rows",
-        "include_hidden_rows",
-        "keep_summary_rows",
-        "keep_placeholders",
-    ):
-        value = getattr(mapping, name)
-        if value not in ("", False) and (name, value) != ("header_rows", 1):
-            lines.append(f"{name} = {_toml(value)}")
+    lines = ["[[table]]", *_entries(mapping, but=_PARTS)]
     if mapping.stated:
         lines += ["", "[table.stated]"]
         lines += [f"{_key(key)} = {_toml(value)}" for key, value in mapping.stated.items()]
-    if mapping.pivot:
-        lines += ["", "[table.pivot]", *_entries(mapping.pivot)]
+    if mapping.long:
+        lines += ["", "[table.long]", *_entries(mapping.long)]
+    if mapping.matrix:
+        lines += ["", "[table.matrix]", *_entries(mapping.matrix)]
+    mark = "[table.pivot]" if len(mapping.pivots) == 1 else "[[table.pivot]]"
+    for pivot in mapping.pivots:
+        lines += ["", mark, *_entries(pivot)]
     for column in mapping.columns:
         lines.append("")
         reason = (reasons or {}).get(f"{column.column}:{column.header}", "")
@@ -239,17 +219,22 @@ def write_mapping(mapping: LayoutMapping, reasons: Mapping[str, str] | None = No
     return "\n".join(lines) + "\n"
 
 
-def _entries(part: ColumnMapping | PivotMapping) -> list[str]:
+def _entries(part: object, but: tuple[str, ...] = ()) -> list[str]:
+    """The fields of a part that say something."""
     return [
         f"{one.name} = {_toml(value)}"
-        for one in fields(part)
-        if (value := getattr(part, one.name)) not in ("", None, False, {})
+        for one in fields(part)  # type: ignore[arg-type]
+        if one.name not in but and (value := getattr(part, one.name)) != one.default and value not in ({}, ())
     ]
 
 
 def _toml(value: object) -> str:
     if isinstance(value, bool):
         return "true" if value else "false"
+    if isinstance(value, AxisMapping):
+        return "{ " + ", ".join(_entries(value)) + " }"
+    if isinstance(value, list | tuple):
+        return "[" + ", ".join(map(_toml, value)) + "]"
     if isinstance(value, Mapping):
         return "{ " + ", ".join(f"{_key(key)} = {_toml(one)}" for key, one in value.items()) + " }"
     if isinstance(value, str):
