@@ -7,6 +7,7 @@ from dataclasses import dataclass
 from specflow.importers.measured.header_cells import HeaderCell
 from specflow.importers.measured.header_text import HeaderText
 from specflow.importers.measured.mapping import ColumnMapping
+from specflow.importers.measured.readings import Spelled
 from specflow.importers.measured.result import ColumnReading, Question, Role
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.measured.unit_source import FoundUnit, find_unit
@@ -19,7 +20,8 @@ from specflow.model.parameter import Parameter, QuantityIdentity
 class ColumnMeaning:
     """One column: its role, and what the role needs.
 
-    ``of`` is the cell of the value header that an uncertainty belongs to; ``k`` its coverage factor.
+    ``of`` is the cell of the value header that an uncertainty belongs to; ``k`` its coverage factor. ``scale`` is what
+    its readings are multiplied by; ``by_row`` and ``by_cell`` say where units stand beside them (see ``Spelled``).
     """
 
     header: HeaderCell
@@ -37,6 +39,14 @@ class ColumnMeaning:
     of: str = ""
     k: float | None = None
     fill_down: bool = False
+    scale: float = 1.0
+    by_row: int = 0
+    by_cell: bool = False
+
+    @property
+    def spelled(self) -> Spelled:
+        """How its readings are written."""
+        return Spelled(self.unit, self.by_row, self.by_cell, self.scale)
 
     @property
     def column(self) -> int:

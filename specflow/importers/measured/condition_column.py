@@ -43,6 +43,8 @@ def condition_of(heading: Heading, dimension: KnownDimension, unit: FoundUnit, r
         dimension=dimension.name,
         unit=unit.unit,
         unit_from=unit.source,
+        by_row=unit.by_row,
+        by_cell=unit.by_cell,
     )
 
 
@@ -62,6 +64,8 @@ def mapped_condition(heading: Heading, unit: FoundUnit) -> ColumnMeaning:
         dimension=named,
         unit=unit.unit,
         unit_from=unit.source,
+        by_row=unit.by_row,
+        by_cell=unit.by_cell,
         is_text=not (unit.unit and numeric),
     )
 

@@ -69,7 +69,7 @@ def _numbers(
     table: FoundTable, meaning: ColumnMeaning, rows: Rows, rejects: Rejects, read: ReadConditions
 ) -> NDArray[np.float64]:
     own = rejects.apart()
-    numbers = read_numbers(table, meaning.column, meaning.unit, rows, own)
+    numbers = read_numbers(table, meaning.column, meaning.spelled, rows, own)
     rejects.cells += own.cells
     if numbers.problem:
         letter = column_letter(meaning.column)

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 from functools import lru_cache
 
 from specflow.errors import UnitError
+from specflow.importers.measured.scale_text import ScaleText, of_unit, without_factor
 from specflow.parameters.headers import looks_like_unit, split_header
 from specflow.units import Unit, parse_unit
 
@@ -41,7 +42,8 @@ _WORDS_NOT_UNITS = frozenset(
 class HeaderText:
     """``unit`` as written ("" without one); ``odd_unit`` stands where a unit would but is none that is known.
 
-    ``place`` is what follows "@"; ``k`` a coverage factor; ``bracketed`` other words in brackets.
+    ``place`` is what follows "@"; ``k`` a coverage factor; ``bracketed`` other words in brackets; ``scale`` a factor
+    beside the unit.
     """
 
     text: str
@@ -51,6 +53,7 @@ class HeaderText:
     place: str = ""
     k: float | None = None
     bracketed: tuple[str, ...] = ()
+    scale: ScaleText | None = None
 
 
 @lru_cache(maxsize=4096)
@@ -58,6 +61,7 @@ def read_header(text: str) -> HeaderText:
     """Take a header apart: "Gain @ antenna face (dB)", "EIRP / dBm", "f, GHz", "U (dB), k=2", "Temp °C"."""
     whole = " ".join(text.split())
     rest, k = without_coverage(whole)
+    rest, scale = _without_scale(rest)
     rest, unit, odd, bracketed = _without_brackets(rest)
     place = _PLACE.search(rest)
     found = place["place"].strip() if place else ""
@@ -66,7 +70,20 @@ def read_header(text: str) -> HeaderText:
         found, unit = _without_tail(found) if not _starts_with_number(found) else (found, "")
     if not unit and not odd:
         rest, unit = _without_tail(_PLUS_MINUS.sub("± ", rest))
-    return HeaderText(whole, rest.strip(" ,;:/-."), unit, odd, found, k, bracketed)
+    if scale is not None and not unit:
+        scale = ScaleText(scale.text)  # of which unit it is a part is not said
+    return HeaderText(whole, rest.strip(" ,;:/-."), unit, odd, found, k, bracketed, scale)
+
+
+def _without_scale(text: str) -> tuple[str, ScaleText | None]:
+    """Cut a factor beside the unit out: "V (10^-3 V)" is "V (V)"; the unit alone is left in its brackets."""
+    for match in _BRACKET.finditer(text):
+        inside = next(group for group in match.groups() if group is not None)
+        found = of_unit(inside)
+        if found is not None and (not found[0] or _is_unit(found[0])):
+            unit = f"({found[0]})" if found[0] else ""
+            return f"{text[: match.start()]}{unit}{text[match.end() :]}".strip(), found[1]
+    return without_factor(text)
 
 
 def without_coverage(text: str) -> tuple[str, float | None]:

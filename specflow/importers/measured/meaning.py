@@ -9,8 +9,10 @@ from __future__ import annotations
 import re
 from collections import Counter
 from collections.abc import Mapping
+from dataclasses import replace
 
 from specflow.conditions import find_dimension, known_dimension
+from specflow.importers.measured.cell_units import is_unit_column
 from specflow.importers.measured.column import ColumnMeaning, Heading
 from specflow.importers.measured.condition_column import (
     condition_of,
@@ -23,16 +25,18 @@ from specflow.importers.measured.condition_column import (
 from specflow.importers.measured.constants import ConstantColumn, read_constants
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.header_cells import HeaderCell
-from specflow.importers.measured.header_text import header_key, known_unit, read_header
+from specflow.importers.measured.header_text import header_key, read_header
 from specflow.importers.measured.mapping import ColumnMapping, LayoutMapping
 from specflow.importers.measured.pairing import of_their_values, uncertainty_column, without_doubles
 from specflow.importers.measured.quantity_text import bare_word, name_quantity
 from specflow.importers.measured.result import Role
 from specflow.importers.measured.roles import UncertaintyWords, role_of_words, uncertainty_of
+from specflow.importers.measured.scaling import scaled_unit, with_scale
 from specflow.importers.measured.stated import PERSON, Stated
 from specflow.importers.measured.tables import FoundTable
+from specflow.importers.measured.unit_source import find_unit
 from specflow.importers.measured.value_column import mapped_value, named_value
-from specflow.importers.readers import column_letter, looks_numeric
+from specflow.importers.readers import column_letter
 
 _READING_AS_TEXT = re.compile(r"^\s*[<>≤≥]\s*[+\-−]?[0-9]")
 _MOST_TEXTS = 50
@@ -67,6 +71,14 @@ class _Reader:
         self._seen = Counter(header_key(header.text) for header in table.headers)
 
     def read(self, header: HeaderCell) -> ColumnMeaning:
+        """Return what a column is; a factor in its header is applied, or asked about."""
+        return with_scale(self._read(header), self._entry(header))
+
+    def _entry(self, header: HeaderCell) -> ColumnMapping:
+        mapped = self._mapping.column(header.text, column_letter(header.column))
+        return self._said(header) or mapped or ColumnMapping()
+
+    def _read(self, header: HeaderCell) -> ColumnMeaning:
         said = self._said(header)
         mapped = said or self._mapping.column(header.text, column_letter(header.column))
         by = PERSON if said else "the mapping"
@@ -74,8 +86,10 @@ class _Reader:
         if mapped is not None and (mapped.role or mapped.parameter or mapped.dimension):
             return self._as_mapped(heading)
         pivot = self._mapping.pivot
-        if pivot is not None and pivot.pattern().fullmatch(header.text):
+        if pivot is not None and pivot.is_about(header.text, header.letter):
             return heading.means(Role.PIVOT, "the pattern of the mapping")
+        if is_unit_column(self._table, header):
+            return self._unit_column(heading)
         if self._seen[header_key(header.text)] > 1:
             remedy = "give the columns different names, or settle each by its letter in a mapping"
             return heading.ask(f"the header {header.text!r} occurs more than once", remedy)
@@ -93,12 +107,14 @@ class _Reader:
         for key, text in self._stated.columns.items():
             if key.upper() == letter or header_key(key) == header_key(header.text):
                 what, _, unit = (part.strip() for part in text.partition(" in "))
+                scale, unit = scaled_unit(unit)
+                entry = ColumnMapping(column=letter, unit=unit, scale=scale)
                 if what.casefold() in {role.value for role in Role}:
-                    return ColumnMapping(column=letter, role=what.casefold(), unit=unit)
+                    return replace(entry, role=what.casefold())
                 is_parameter = self._context.dictionary.get(what) is not None
                 if find_dimension(what) is not None and not (is_parameter and known_dimension(what) is None):
-                    return ColumnMapping(column=letter, dimension=what, unit=unit)
-                return ColumnMapping(column=letter, parameter=what, unit=unit)
+                    return replace(entry, dimension=what)
+                return replace(entry, parameter=what)
         return None
 
     def _as_mapped(self, heading: Heading) -> ColumnMeaning:
@@ -125,9 +141,6 @@ class _Reader:
         if words is not None:
             return uncertainty_column(heading, words, heading.unit())
         named = role_of_words(parts)
-        if named is not None and named[0] is Role.ITEM and self._holds_units(heading):
-            remedy = "put each quantity into a column of its own, with its unit in the header"
-            return heading.ask("holds units: a table with the quantity in the rows is not read", remedy)
         if named is not None and not self._is_ratio(heading):
             return heading.means(*named)
         unit = heading.unit()
@@ -150,12 +163,29 @@ class _Reader:
             return temperature(heading, unit, self._stated)
         return self._unknown(heading)
 
-    def _holds_units(self, heading: Heading) -> bool:
-        """A column "Unit" names specimens, or it holds dB, dBm, GHz."""
-        if header_key(heading.parts.name) != "unit":
-            return False
-        words = {str(value) for value in self._table.cells(heading.header.column).distinct} - {""}
-        return bool(words) and all(known_unit(word) is not None and not looks_numeric(word) for word in words)
+    def _unit_column(self, heading: Heading) -> ColumnMeaning:
+        """A column of units gives them to another column; where that is called "Value", the quantity is in the rows."""
+        cell = heading.header.cell
+        others = [one for one in self._table.headers if one.column != heading.header.column]
+        units = [
+            (one, find_unit(self._table, one, read_header(one.text), self._entry(one).unit)) for one in others
+        ]
+        given = [one for one, unit in units if cell in unit.source or unit.by_row == heading.header.column]
+        if any(self._is_named(one) for one in given):
+            return heading.means(Role.NOT_READ, "it holds the units of another column")
+        if given or any(cell in unit.problem for _, unit in units):
+            remedy = "put each quantity into a column of its own, with its unit in the header"
+            return heading.ask("holds units: a table with the quantity in the rows is not read", remedy)
+        return heading.means(Role.REMARK, "units that no column needs; kept as a remark")
+
+    def _is_named(self, header: HeaderCell) -> bool:
+        """Whether a header, or what is said of its column, names what it holds."""
+        entry, parts = self._entry(header), read_header(header.text)
+        if entry.role or entry.parameter or entry.dimension or find_dimension(parts.name) is not None:
+            return True
+        return bool(
+            name_quantity(parts, "", self._context.dictionary, ()).candidates or uncertainty_of(parts)
+        )
 
     def _is_ratio(self, heading: Heading) -> bool:
         """S/N is a serial number, or a ratio of signal to noise: fractions are no serial numbers."""

@@ -31,6 +31,8 @@ def uncertainty_column(heading: Heading, words: UncertaintyWords, unit: FoundUni
         heading.means(Role.UNCERTAINTY, f"the header names an uncertainty; unit from {unit.source}"),
         unit=unit.unit,
         unit_from=unit.source,
+        by_row=unit.by_row,
+        by_cell=unit.by_cell,
         of=heading.hints.of or words.of,
         k=k,
     )

@@ -16,7 +16,7 @@ HEAD = f"""# A mapping of measurement tables: how the columns of each layout are
 # A layout is recognised by its headers, their units and their order, not by the name of the file.
 # role: value, condition, item, uncertainty, date, requirement, stated limit, stated verdict, index, remark, not read
 # value:       parameter, unit; plane, statistic, polarisation, bandwidth = "1 MHz",
-#              spectrum = "noise-like" or "discrete"
+#              spectrum = "noise-like" or "discrete"; scale = 20 where a reading times 20 is in the unit
 # condition:   dimension, unit; fill_down = true where a blank cell means the one above
 # uncertainty: unit, k = 2 (1: a standard uncertainty), of = "header of the values"
 # table:       block, method, stage; [table.stated] for conditions that hold for all rows; header_rows = 2;
@@ -64,21 +64,26 @@ def _reason(meaning: ColumnMeaning) -> str:
 
 def _entry(meaning: ColumnMeaning, mapping: LayoutMapping) -> ColumnMapping:
     letter = meaning.letter
+    unit = (
+        "" if meaning.by_row or meaning.by_cell else meaning.unit
+    )  # one unit for all would override those beside
     used = mapping.column(meaning.header.text, letter)
     if used is not None:
         return used
-    entry = ColumnMapping(header=meaning.header.text, column=letter)
+    entry = ColumnMapping(
+        header=meaning.header.text, column=letter, scale=None if meaning.scale == 1 else meaning.scale
+    )
     if meaning.role is Role.VALUE and meaning.quantity is not None:
         quantity = meaning.quantity
         return replace(
-            entry, role="value", parameter=quantity.parameter, unit=meaning.unit, plane=quantity.plane,
+            entry, role="value", parameter=quantity.parameter, unit=unit, plane=quantity.plane,
             statistic=quantity.statistic, polarisation=quantity.polarisation,
             spectrum="" if meaning.spectrum is SpectrumKind.UNKNOWN else meaning.spectrum.value,
         )  # fmt: skip
     if meaning.role is Role.CONDITION:
-        return replace(entry, role="condition", dimension=meaning.dimension, unit=meaning.unit)
+        return replace(entry, role="condition", dimension=meaning.dimension, unit=unit)
     if meaning.role is Role.UNCERTAINTY:
-        return replace(entry, role="uncertainty", unit=meaning.unit, k=meaning.k)
+        return replace(entry, role="uncertainty", unit=unit, k=meaning.k)
     if meaning.role is Role.BANDWIDTH:
         return replace(entry, role="remark")
     if meaning.role is Role.UNRESOLVED:

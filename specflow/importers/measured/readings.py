@@ -13,12 +13,13 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.errors import UnitError
+from specflow.importers.measured.cell_units import brought, slip_of, to_unit
 from specflow.importers.measured.cells import Rows
 from specflow.importers.measured.placeholders import reject_placeholders
 from specflow.importers.measured.rejects import Rejects
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.measured.unit_source import format_runs
-from specflow.importers.readers import Grid, OddKind, OddRun, Value, is_blank
+from specflow.importers.readers import Grid, OddKind, OddRun, Value, address, is_blank
 from specflow.units import (
     ONE,
     PERCENT,
@@ -46,17 +47,36 @@ class Numbers:
     problem: str = ""
 
 
-def read_numbers(table: FoundTable, column: int, unit: str, rows: Rows, rejects: Rejects) -> Numbers:
-    """Read the rows of one column in ``unit``; ``problem`` says when its number formats contradict it as a whole."""
+@dataclass(frozen=True, slots=True)
+class Spelled:
+    """How the readings of a column are written: in ``unit``, or each in its own; times ``scale``.
+
+    ``by_row`` is the column with the unit of each row (0: none); ``by_cell`` says that a cell without a unit of its own
+    has none.
+    """
+
+    unit: str
+    by_row: int = 0
+    by_cell: bool = False
+    scale: float = 1.0
+
+
+def read_numbers(table: FoundTable, column: int, spelled: Spelled, rows: Rows, rejects: Rejects) -> Numbers:
+    """Read the rows of one column; ``problem`` says when its number formats contradict its unit as a whole."""
     cells = table.cells(column)
+    unit = parse_unit(spelled.unit or "1")
     low = cells.numbers_at(rows)
     numbers = Numbers(low, low)
     reject_placeholders(low, column, rows, rejects)
-    _apply_formats(table, column, parse_unit(unit or "1"), rows, numbers, rejects)
+    _apply_formats(table, column, unit, rows, numbers, rejects)
     if cells.odd:
-        _read_odd(table, column, parse_unit(unit or "1"), rows, numbers, rejects)
+        _read_odd(table, column, unit, spelled.by_cell, rows, numbers, rejects)
         if numbers.high is numbers.low:  # a bound is no placeholder
             reject_placeholders(numbers.low, column, rows, rejects)
+    if spelled.by_row:
+        _bring_rows(table, column, spelled.by_row, unit, rows, numbers, rejects)
+    if spelled.scale != 1:
+        _scale(numbers, spelled)
     empty = int(np.count_nonzero(~cells.filled[rows - cells.first]))
     if empty:
         rejects.blank["nothing written"] += empty
@@ -128,8 +148,59 @@ def _agree(written: Unit, unit: Unit) -> bool:
     return replace(written, measure=written.measure or unit.measure) == unit
 
 
+def _scale(numbers: Numbers, spelled: Spelled) -> None:
+    """Multiply all readings; a factor is positive, so that bounds stay bounds."""
+    points = numbers.high is numbers.low
+    numbers.low = numbers.low * spelled.scale
+    numbers.high = numbers.low if points else numbers.high * spelled.scale
+    numbers.notes.append(f"every reading was multiplied by {spelled.scale:g} to be in {spelled.unit or '1'}")
+
+
+def _bring_rows(
+    table: FoundTable, column: int, beside: int, unit: Unit, rows: Rows, numbers: Numbers, rejects: Rejects
+) -> None:
+    """Bring readings to the unit of the column where the unit beside them is another one."""
+    words = [str(value).strip() for value in table.cells(beside).at(rows)]
+    for word in dict.fromkeys(words):
+        there = np.array([one == word for one in words]) & ~np.isnan(numbers.low)
+        written = parse_unit(word) if word else None
+        if not there.any() or written == unit:
+            continue
+        changed = []
+        for place in np.flatnonzero(there).tolist():
+            slip = f"no unit beside the reading, in {address(int(rows[place]), beside)}" if not word else ""
+            ends = _brought(numbers.low[place], numbers.high[place], written, unit, slip or slip_of(word))
+            if isinstance(ends, str):
+                rejects.add(int(rows[place]), column, float(numbers.low[place]), ends)
+                ends = (np.nan, np.nan)
+            else:
+                changed.append(address(int(rows[place]), column))
+            numbers.low[place], numbers.high[place] = ends
+        if changed:
+            numbers.notes.append(_conversion(len(changed), changed[0], str(written), unit))
+
+
+def _brought(
+    low: float, high: float, written: Unit | None, unit: Unit, problem: str = ""
+) -> tuple[float, float] | str:
+    """The ends of a reading in the unit of its column, or why they cannot be brought to it."""
+    if problem or written is None:
+        return problem
+    if not brought(written, unit):
+        return f"the cell says {written}, the column {unit}"
+    try:
+        return to_unit(float(low), written, unit), to_unit(float(high), written, unit)
+    except UnitError as error:
+        return error.message
+
+
+def _conversion(count: int, first: str, written: str, unit: Unit) -> str:
+    cells = f"{count} readings in {written} were" if count > 1 else f"the reading in {written} was"
+    return f"{cells} converted to {unit} ({'the first is ' if count > 1 else ''}{first})"
+
+
 def _read_odd(
-    table: FoundTable, column: int, unit: Unit, rows: Rows, numbers: Numbers, rejects: Rejects
+    table: FoundTable, column: int, unit: Unit, by_cell: bool, rows: Rows, numbers: Numbers, rejects: Rejects
 ) -> None:
     cells = table.cells(column)
     places = (
@@ -139,12 +210,13 @@ def _read_odd(
         (table.grid.decimal == "," if table.grid.decimal else None) if table.grid.is_text else None
     )
     texts = 0
+    reader = _OddCells(table.grid, column, unit, decimal_comma, by_cell, rejects)
     for row in cells.odd:
         place = row - cells.first if places is None else places.get(row)
         if place is None:
             continue
         value = cells.value(row)
-        ends = _ends(table.grid, row, column, value, unit, decimal_comma, rejects)
+        ends = reader.ends(row, value)
         if ends is None:
             continue
         if ends[0] != ends[1] and numbers.high is numbers.low:
@@ -153,31 +225,55 @@ def _read_odd(
         texts += ends[0] == ends[1]
     if texts and not table.grid.is_text:
         numbers.notes.append(f"{texts} numbers stored as text were read")
+    for written, cells_brought in reader.brought.items():
+        numbers.notes.append(_conversion(len(cells_brought), cells_brought[0], written, unit))
 
 
-def _ends(
-    grid: Grid, row: int, column: int, value: Value, unit: Unit, decimal_comma: bool | None, rejects: Rejects
-) -> tuple[float, float] | None:
-    reason = _not_text(grid, row, column, value)
-    if reason:
-        rejects.add(row, column, value, reason)
-        return None
-    text = str(value)
-    try:
-        reading, written = _parsed(text, decimal_comma)
-    except UnitError as error:
-        rejects.add(row, column, value, error.message + (f" ({error.hint})" if error.hint else ""))
-        return None
-    if isinstance(reading, Blank):
-        if any(word in reading.reason for word in _FAULTY_BLANKS):
-            rejects.add(row, column, value, reading.reason)
-        else:
-            rejects.blank[f"{reading.reason}: {text.strip()}"] += 1
-        return None
-    if written is not None and not _agree(written, unit):
-        rejects.add(row, column, value, f"the cell says {written}, the column {unit}")
-        return None
-    return reading.lo, reading.hi
+@dataclass
+class _OddCells:
+    """Reads cells that hold something else than a plain number; ``brought`` are cells converted, by their unit."""
+
+    grid: Grid
+    column: int
+    unit: Unit
+    decimal_comma: bool | None
+    by_cell: bool
+    rejects: Rejects
+    brought: dict[str, list[str]] = field(default_factory=dict)
+
+    def ends(self, row: int, value: Value) -> tuple[float, float] | None:
+        """The ends of a reading; None where it is rejected or blank."""
+        found = self._read(row, value)
+        if isinstance(found, str):
+            self.rejects.add(row, self.column, value, found)
+            return None
+        return found
+
+    def _read(self, row: int, value: Value) -> tuple[float, float] | str | None:
+        reason = _not_text(self.grid, row, self.column, value)
+        if reason:
+            return reason
+        text = str(value)
+        try:
+            reading, written = _parsed(text, self.decimal_comma)
+        except UnitError as error:
+            return error.message + (f" ({error.hint})" if error.hint else "")
+        if isinstance(reading, Blank):
+            if any(word in reading.reason for word in _FAULTY_BLANKS):
+                return reading.reason
+            self.rejects.blank[f"{reading.reason}: {text.strip()}"] += 1
+            return None
+        return self._in_unit(row, reading, written)
+
+    def _in_unit(self, row: int, reading: Reading, written: Unit | None) -> tuple[float, float] | str:
+        if written is None and self.by_cell:
+            return "the cell states no unit, and other cells of the column state several"
+        if written is None or _agree(written, self.unit):
+            return reading.lo, reading.hi
+        ends = _brought(reading.lo, reading.hi, written, self.unit, slip_of(str(written)))
+        if not isinstance(ends, str):
+            self.brought.setdefault(str(written), []).append(address(row, self.column))
+        return ends
 
 
 @lru_cache(maxsize=8192)

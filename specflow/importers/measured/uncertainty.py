@@ -59,7 +59,7 @@ def from_column(
 ) -> Spread:
     """Read an uncertainty column that belongs to ``value``, whose readings are ``low``."""
     own = rejects.apart()
-    numbers = read_numbers(table, meaning.column, meaning.unit, rows, own)
+    numbers = read_numbers(table, meaning.column, meaning.spelled, rows, own)
     rejects.cells += own.cells
     letter = column_letter(meaning.column)
     if numbers.problem:

@@ -4,11 +4,12 @@ from __future__ import annotations
 
 import re
 from collections import Counter
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from specflow.errors import UnitError
+from specflow.importers.measured.cell_units import brought, one_unit, slip_of, unit_column_of, unit_words
 from specflow.importers.measured.header_cells import HeaderCell
 from specflow.importers.measured.header_text import HeaderText, known_unit
 from specflow.importers.measured.tables import FoundTable
@@ -20,17 +21,28 @@ _MOST_TEXTS = 2000
 
 @dataclass(frozen=True, slots=True)
 class FoundUnit:
-    """A unit as written and its source in words; ``problem`` says why there is none."""
+    """A unit as written and its source in words; ``problem`` says why there is none.
+
+    ``by_row`` is the column that gives the unit of each row (0: none); ``by_cell`` says that each cell gives its own.
+    """
 
     unit: str = ""
     source: str = ""
     problem: str = ""
+    by_row: int = 0
+    by_cell: bool = False
 
 
 def find_unit(table: FoundTable, header: HeaderCell, parts: HeaderText, mapped: str = "") -> FoundUnit:
-    """Look for the unit: mapping, header, units row, number format, cell texts, in this order."""
+    """Look for the unit: mapping, header, units row, number format, cell texts, unit column, in this order."""
     if mapped:
-        return _checked(mapped, "the mapping")
+        return _beside(table, header, _checked(mapped, "the mapping"))
+    found = _found(table, header, parts)
+    slip = slip_of(found.unit)
+    return FoundUnit(problem=f"{slip}; found in {found.source}") if slip else found
+
+
+def _found(table: FoundTable, header: HeaderCell, parts: HeaderText) -> FoundUnit:
     written = [(parts.unit, f"the header {header.cell}")] if parts.unit else []
     if header.unit and header.unit_row is not None:
         written.append((header.unit, f"the units row, {address(header.unit_row, header.column)}"))
@@ -40,7 +52,12 @@ def find_unit(table: FoundTable, header: HeaderCell, parts: HeaderText, mapped: 
         return _checked(*written[0])
     if parts.odd_unit:
         return _checked(parts.odd_unit, f"the header {header.cell}")
-    return _from_format(table, header) or _from_texts(table, header) or FoundUnit()
+    return (
+        _from_format(table, header)
+        or _from_texts(table, header)
+        or _from_unit_column(table, header)
+        or FoundUnit()
+    )
 
 
 def format_runs(table: FoundTable, column: int) -> list[OddRun]:
@@ -78,7 +95,7 @@ def _from_format(table: FoundTable, header: HeaderCell) -> FoundUnit | None:
 
 
 def _from_texts(table: FoundTable, header: HeaderCell) -> FoundUnit | None:
-    """The unit written into the cells, where all cells carry the same."""
+    """The unit written into the cells; of several the commonest, where the others can be brought to it."""
     cells = table.cells(header.column)
     if cells.numeric.any() or not cells.odd:
         return None
@@ -96,6 +113,36 @@ def _from_texts(table: FoundTable, header: HeaderCell) -> FoundUnit | None:
             units[str(unit)] += 1
     if len(units) == 1:
         return FoundUnit(next(iter(units)), "the text of the cells")
+    if len(units) > 1 and one_unit(units):
+        return FoundUnit(one_unit(units), f"the text of the cells ({_counts(units)})", by_cell=True)
     if len(units) > 1:
         return FoundUnit(problem=f"the cells carry different units: {', '.join(sorted(units))}")
     return None
+
+
+def _beside(table: FoundTable, header: HeaderCell, mapped: FoundUnit) -> FoundUnit:
+    """The unit of a mapping; where a column gives the unit of each row, readings are brought to it if all can be."""
+    other = unit_column_of(table, header)
+    units = None if other is None else unit_words(table.cells(other.column).at(table.rows))
+    if other is None or units is None or not mapped.unit:
+        return mapped
+    wanted = parse_unit(mapped.unit)
+    if not all(brought(parse_unit(unit), wanted) for unit in units):
+        return mapped
+    return replace(mapped, by_row=other.column)
+
+
+def _from_unit_column(table: FoundTable, header: HeaderCell) -> FoundUnit | None:
+    """The unit that another column gives, row by row; of several the commonest, if the others can be brought to it."""
+    other = unit_column_of(table, header)
+    units = None if other is None else unit_words(table.cells(other.column).at(table.rows))
+    if other is None or units is None or not table.cells(header.column).numeric.any():
+        return None
+    unit, where = one_unit(units), f"the unit column {other.cell}"
+    if not unit:
+        return FoundUnit(problem=f"{where} holds different units: {', '.join(sorted(units))}")
+    return FoundUnit(unit, where if len(units) == 1 else f"{where} ({_counts(units)})", by_row=other.column)
+
+
+def _counts(units: Counter[str]) -> str:
+    return ", ".join(f"{unit} in {count}" for unit, count in units.most_common())

@@ -86,6 +86,8 @@ def value_of(
         quantity=quantity,
         unit=unit.unit,
         unit_from=unit.source,
+        by_row=unit.by_row,
+        by_cell=unit.by_cell,
         spectrum=_spectrum(heading.hints.spectrum or stated.text("spectrum")),
     )
 

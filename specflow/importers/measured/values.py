@@ -51,7 +51,7 @@ def read_values(work: TableWork, conditions: Columns) -> ReadValues:
 
 def column_numbers(work: TableWork, meaning: ColumnMeaning) -> Numbers:
     """Read the numbers of one value column; what number formats or merged cells make doubtful is asked or rejected."""
-    numbers = read_numbers(work.table, meaning.column, meaning.unit, work.rows, work.rejects)
+    numbers = read_numbers(work.table, meaning.column, meaning.spelled, work.rows, work.rejects)
     if numbers.problem:
         work.questions.append(meaning.asks(numbers.problem, ONE_FORMAT))
     _reject_merged(work, meaning.column, numbers)
