@@ -8,7 +8,7 @@ from typing import Any
 from specflow.changes import diff
 from specflow.model.base import Document
 from specflow.model.budget import Budget
-from specflow.model.budget_line import LineTolerance
+from specflow.model.budget_line import BudgetLine, LineTolerance
 from specflow.model.budget_outcome import BudgetOutcome
 from specflow.model.project import Project
 from specflow.model.requirement import Requirement
@@ -125,3 +125,27 @@ def receiver_store(path: Path, snapshot: Snapshot | None = None) -> ProjectStore
     documents = [one for group in known.documents.values() for one in group.values()]
     store.apply(diff(store.load(), [one for one in documents if not isinstance(one, Project)]), by="tester")
     return store
+
+
+def with_image(budget: Budget) -> Budget:
+    """Return the receiver with a double-sideband mixer, a filter that rejects its image, and a second conversion."""
+    double = {"parameter": "noise_figure", "value": 6.0, "unit": "dB", "sideband": "DSB"}
+    single = {"value": 9.0, "sideband": "SSB"}
+    changed = {("MIX", "noise_temperature"): double, ("IF", "noise_figure"): single}
+    lines = [
+        BudgetLine.model_validate(line.model_dump() | changed.get((line.block, line.parameter), {}))
+        for line in budget.lines
+    ]
+    for position, block, rejection in ((2, "FIL", 12.0), (4, "MIX", 5.0), (5, "IF", 8.0)):
+        lines.append(
+            BudgetLine.model_validate(
+                {
+                    "position": position,
+                    "block": block,
+                    "parameter": "image_rejection",
+                    "value": rejection,
+                    "unit": "dB",
+                }
+            )
+        )
+    return budget.model_copy(update={"lines": tuple(lines)})

@@ -199,7 +199,10 @@ def _parts(
     parts = {}
     for number in numbers:
         row = probe.chain.lines[number].row
-        parts[number] = np.broadcast_to(law.of(figures[law.figure][row], _front(figures, row)), (size,))
+        figure = figures.stages[law.figure][
+            row
+        ]  # of a mixer without the image noise, which comes from others
+        parts[number] = np.broadcast_to(law.of(figure, _front(figures, row)), (size,))
     if np.any(sum(parts.values()) == 0):
         raise CalculationError(
             f"no shared position contributes to {target.name} by its estimate",

@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 
 from specflow.budgets.cascade_level import gain, gain_so_far
 from specflow.budgets.figures import Figures
+from specflow.budgets.image import Mixers, mixers_of, source_weight_slopes, source_weights
 from specflow.calculators.decibel import BOLTZMANN, T0, total
 from specflow.calculators.noise import noise_temperature
 from specflow.calculators.noise_cascade import (
@@ -73,19 +74,44 @@ def source(figures: Figures) -> Floats | float:
     return T0 if stated is None else stated
 
 
+def _image_mixers(figures: Figures) -> Mixers | None:
+    return mixers_of(figures.chain) if "image_rejection" in figures.arrays else None
+
+
+def source_at_images(figures: Figures) -> Floats | float:
+    """What the source's noise at images adds to 290 K counted there, in K so far: (T_source - 290 K) times its weight.
+
+    Noise figures count the image of the source at 290 K; what feeds the chain need not be at that.
+    """
+    mixers = _image_mixers(figures)
+    if mixers is None:
+        return 0.0
+    return (source(figures) - T0) * source_weights(figures.stages, mixers)
+
+
+def _at_images(figures: Figures) -> Floats | float:
+    so_far = source_at_images(figures)
+    return so_far if isinstance(so_far, float) else np.asarray(so_far[-1])
+
+
 def system(figures: Figures) -> Floats:
-    """System noise temperature in K at the input of the chain."""
-    return source(figures) + temperature(figures)
+    """System noise temperature in K at the input of the chain, the source's noise at images included."""
+    return source(figures) + temperature(figures) + _at_images(figures)
 
 
 def system_so_far(figures: Figures) -> Floats:
     """System noise temperature with the chain cut off behind each position."""
-    return source(figures) + temperature_so_far(figures)
+    return source(figures) + temperature_so_far(figures) + source_at_images(figures)
 
 
 def system_slopes(figures: Figures) -> Gradient:
     """Derivatives to each figure of each position."""
-    return {**temperature_slopes(figures), "source_k": np.ones_like(figures["gain"])}
+    found = {**temperature_slopes(figures), "source_k": np.ones_like(figures["gain"])}
+    mixers = _image_mixers(figures)
+    if mixers is not None:
+        found["source_k"] = found["source_k"] + source_weights(figures.stages, mixers)[-1]
+        found["image_rejection"] = (source(figures) - T0) * source_weight_slopes(figures.stages, mixers)
+    return found
 
 
 def merit(figures: Figures) -> Floats:
@@ -106,8 +132,14 @@ def merit_slopes(figures: Figures) -> Gradient:
 
 
 def system_shares(figures: Figures) -> Floats:
-    """Share of each position in the system temperature; what feeds the chain has the rest."""
-    return noise_shares(figures) * (temperature(figures) / system(figures))
+    """Share of each position in the system temperature; what feeds the chain has the rest, at its images too."""
+    shares = noise_shares(figures) * (temperature(figures) / system(figures))
+    mixers = _image_mixers(figures)
+    if mixers is None:
+        return shares
+    weights = source_weights(figures.stages, mixers)
+    steps = np.diff(weights, axis=0, prepend=np.zeros_like(weights[:1]))
+    return shares - T0 * steps / system(figures)
 
 
 def floor(figures: Figures) -> Floats:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
@@ -29,7 +30,8 @@ def line_key(line: BudgetLine) -> LineKey:
 class ReadLine:
     """A line with its values, float64 (n,) or (1,), in the line's own unit.
 
-    ``row`` is its position, counted from 0; ``convert`` takes the own unit to the unit of its ``role``.
+    ``row`` is its position, counted from 0; ``convert`` takes the own unit to the unit of its ``role``. ``least`` and
+    ``most`` are the values beyond which no block can be (0 dB, 0 K), in the own unit, ±inf where there is no such.
     """
 
     line: BudgetLine
@@ -38,6 +40,8 @@ class ReadLine:
     convert: Converter
     values: Floats
     is_override: bool = False
+    least: float = -math.inf
+    most: float = math.inf
 
     def figure(self, values: Floats) -> Floats:
         """Return the figure that the law takes for values in the line's own unit."""

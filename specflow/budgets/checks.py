@@ -103,11 +103,11 @@ def _check_document(line: BudgetLine, where: str, dictionary: Dictionary) -> Non
         parse_unit(line.unit)
     except UnitError as error:
         raise UnitError(error.message, where=place, hint=error.hint or "correct the unit") from None
-    if line.sideband == "DSB":
+    if line.sideband and code_key(line.parameter) not in ("noise_figure", "noise_temperature"):
         raise CalculationError(
-            "a double-sideband noise figure stands where the cascade takes a single-sideband one",
+            f"{line.sideband} is said of {line.parameter}; only the noise figure of a mixer has a sideband",
             where=place,
-            hint="give the single-sideband figure: 3.01 dB more for a mixer alone whose image noise counts",
+            hint="say it at the noise figure",
         )
 
 
@@ -120,11 +120,13 @@ def check_line(read: ReadLine, position: BudgetPosition, where: str) -> None:
         )
     least = float(values.min())
     name = code_key(line.parameter)
-    if name in LOSSES and least < 0:
+    if (name in LOSSES or read.role.figure == "image_rejection") and least < 0:
         raise CalculationError(
             f"{line.parameter} is {format_value(least)} {line.unit}",
             where=where,
-            hint="a loss is a positive number of dB; a gain is given as gain",
+            hint="a loss is a positive number of dB; a gain is given as gain"
+            if name in LOSSES
+            else "a rejection is a positive number of dB, 0 dB where nothing keeps the image off",
         )
     if name in ("noise_figure", "noise_temperature", "antenna_noise_temperature"):
         inner = read.convert(np.atleast_1d(least))

@@ -6,6 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.budgets.figures import makes_noise_of_loss
+from specflow.budgets.image import mixers_of
 from specflow.budgets.inverse_figures import PORTS
 from specflow.budgets.probe import Probe, Target
 from specflow.calculators import inverse
@@ -26,6 +27,8 @@ def closed_form(probe: Probe, number: int, target: Target) -> Bound | None:
     A closed form stands for one-sided limits in the unit of the law, where the line moves nothing but its own figure.
     """
     read, bar = probe.chain.lines[number], target.bar
+    if mixers_of(probe.chain) is not None and "noise_figure" in target.output.needs:
+        return None  # gains and noise in front of a mixer count at its image too
     sides = [limit for limit in (bar.lower, bar.upper) if np.isfinite(limit).any()]
     if probe.is_driven or not bar.convert.is_identity or len(sides) != 1 or not np.isfinite(sides[0]).all():
         return None

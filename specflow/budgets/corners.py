@@ -14,7 +14,7 @@ from specflow.budgets.margins import Bar
 from specflow.budgets.outputs import Output
 from specflow.budgets.ranges import ServedRange, held_between, slopes_at, value_at
 from specflow.budgets.result import BudgetResult
-from specflow.budgets.spread import bounds, check_bounds, moves
+from specflow.budgets.spread import bounds, check_bounds, is_cut, moves
 from specflow.model.base import code_key
 from specflow.model.budget import Budget, BudgetLine
 from specflow.model.budget_line import Meaning
@@ -79,7 +79,8 @@ def worst_case(
         for output, bars, one in zip(prepared.outputs, prepared.bars, nominal.outputs, strict=True)
     )
     lines = tuple(read.line for read in prepared.chain.lines)
-    return WorstCase(budget, nominal, lines, outputs, (*nominal.notes, *_sigma_notes(lines)))
+    notes = (*nominal.notes, *_sigma_notes(lines), *cut_notes(prepared.chain))
+    return WorstCase(budget, nominal, lines, outputs, notes)
 
 
 def _sigma_notes(lines: Sequence[BudgetLine]) -> list[str]:
@@ -89,6 +90,12 @@ def _sigma_notes(lines: Sequence[BudgetLine]) -> list[str]:
         if moves(line) and line.tolerance is not None and line.tolerance.meaning is Meaning.SIGMA
     ]
     return [f"taken at the k·σ stated, beyond which they may go: {', '.join(named)}"] if named else []
+
+
+def cut_notes(chain: Chain) -> list[str]:
+    """Say which lines would reach beyond 0 dB or 0 K at the k·σ stated and are cut there."""
+    named = [read.line.place for read in chain.lines if is_cut(read)]
+    return [f"cut at 0 dB or 0 K, where no block can be beyond: {', '.join(named)}"] if named else []
 
 
 def _range(chain: Chain, output: Output, bars: Sequence[Bar], nominal: Floats) -> OutputRange:

@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 from specflow.budgets.chain import Chain, Overrides
 from specflow.budgets.figures import Figures, figures_of
+from specflow.budgets.image import Turn, mixers_of
 from specflow.budgets.laws import check_complete, outputs_of, served
 from specflow.budgets.margins import Bar, bars_of
 from specflow.budgets.outputs import Output
@@ -53,7 +54,7 @@ def prepare(
     bars = tuple(
         bars_of(output, budget, requirements, chain.required, snapshot, dictionary) for output in outputs
     )
-    return Prepared(chain, tuple(outputs), bars, (*chain.notes, *_notes(budget, requirements, outputs)))
+    return Prepared(chain, tuple(outputs), bars, (*chain.notes, *_notes(chain, requirements, outputs)))
 
 
 def evaluate_budget(
@@ -124,7 +125,27 @@ def _levels(figures: Figures) -> Floats | None:
     return levels
 
 
-def _notes(budget: Budget, requirements: Sequence[Requirement], outputs: Sequence[Output]) -> list[str]:
+def _image_notes(chain: Chain) -> list[str]:
+    """Say of every mixer that names its sideband what is taken of the noise at its image."""
+    mixers = mixers_of(chain)
+    notes = []
+    for read in chain.lines:
+        if read.role.figure != "noise_figure" or not read.line.sideband:
+            continue
+        if mixers is not None and mixers.turns[read.row] is Turn.IMAGE:
+            said = "noise at its image counts, as far as image rejections let it through"
+        elif read.line.sideband == "both":
+            said = "the wanted signal is in both sidebands, so its double-sideband figure counts as it is"
+        else:
+            said = (
+                "its image is taken as kept off, at 290 K; image_rejection lines would say what comes through"
+            )
+        notes.append(f"{read.line.place}: {said}")
+    return notes
+
+
+def _notes(chain: Chain, requirements: Sequence[Requirement], outputs: Sequence[Output]) -> list[str]:
+    budget = chain.budget
     notes = [
         f"{one.id} is stated over {one.conditions}, the budget is evaluated over {budget.conditions}"
         for one in requirements
@@ -135,6 +156,7 @@ def _notes(budget: Budget, requirements: Sequence[Requirement], outputs: Sequenc
     needs_source = names & {"noise_floor", "noise_density", "sensitivity", "refsens", "sfdr"}
     if needs_source and budget.noise_source is None and not has_source:
         notes.append("the source is taken at 290 K")
+    notes += _image_notes(chain)
     if names & {"ip1db", "op1db", "output_backoff"}:
         notes.append("the compression of a cascade is an approximation, good to about 0.5 dB")
     return notes

@@ -14,6 +14,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.budgets.chain import Chain, ReadLine
+from specflow.budgets.image import gradient_through_image, mixers_of, with_image_noise
 from specflow.budgets.paths import Law, gradient_of_positions, groups_of, joined
 from specflow.calculators.decibel import NEPER, T0
 from specflow.model.base import code_key
@@ -31,13 +32,15 @@ class Figures:
     """What a law combines: ``arrays`` by figure, each (positions, ...); levels at the ports of whole positions.
 
     ``start`` is the level at the input in dBm (or None); ``own`` are the figures of the positions
-    themselves, which differ from ``arrays`` where parallel paths stand as one stage (see ``paths``).
+    themselves, which differ from ``stages`` where parallel paths stand as one stage (see ``paths``), and these from
+    ``arrays`` where a mixer's noise figure is taken with the image noise that reaches it (see ``image``).
     """
 
     chain: Chain
     arrays: Mapping[str, Floats]
     start: Floats | None
     own: Mapping[str, Floats]
+    stages: Mapping[str, Floats]
 
     def __getitem__(self, figure: str) -> Floats:
         return self.arrays[figure]
@@ -58,6 +61,9 @@ def figures_of(
     gain = _sum_of(chain, values, "gain", shape) if wanted & {"gain", "noise_figure", *_PORTS} else None
     if gain is not None:
         arrays["gain"] = gain
+    mixers = mixers_of(chain) if "noise_figure" in wanted else None
+    if mixers is not None:
+        wanted.add("image_rejection")
     for name in wanted - {"gain", "noise_figure", "amount", *_PORTS}:
         arrays[name] = _sum_of(chain, values, name, shape)
     if "antenna_gain" in arrays:
@@ -72,9 +78,9 @@ def figures_of(
         arrays["noise_figure"] = _noise(chain, values, gain, shape, slice_)
     start = _start(chain, arrays, shape, slice_)
     groups = groups_of(chain.positions)
-    if not groups or gain is None:
-        return Figures(chain, arrays, start, arrays)
-    return Figures(chain, joined(arrays, groups, sum_law(chain)), start, arrays)
+    stages = joined(arrays, groups, sum_law(chain)) if groups and gain is not None else arrays
+    taken = stages if mixers is None else with_image_noise(stages, mixers)
+    return Figures(chain, taken, start, arrays, stages)
 
 
 def sum_law(chain: Chain) -> Law:
@@ -210,9 +216,11 @@ def line_slopes(chain: Chain, values: Sequence[Floats], figures: Figures, gradie
     ``gradient`` holds the derivative of the result to each figure of each position.
     """
     shape = next(iter(figures.arrays.values())).shape[1:]
-    groups = groups_of(chain.positions)
+    groups, mixers = groups_of(chain.positions), mixers_of(chain)
+    if mixers is not None and "noise_figure" in figures.arrays:
+        gradient = gradient_through_image(figures.stages, mixers, gradient)
     if groups and "gain" in figures.arrays:
-        gradient = gradient_of_positions(figures.own, figures.arrays, groups, gradient, sum_law(chain))
+        gradient = gradient_of_positions(figures.own, figures.stages, groups, gradient, sum_law(chain))
     lossy = set(makes_noise_of_loss(chain))
     slopes = np.zeros((len(chain.lines), *shape))
     for number, read in enumerate(chain.lines):

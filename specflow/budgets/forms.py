@@ -16,6 +16,7 @@ from specflow.calculators.error_vector import (
     evm_from_phase_noise,
     evm_from_snr,
 )
+from specflow.calculators.image_noise import ssb_noise_figure
 from specflow.calculators.noise import noise_figure_of_temperature
 
 Floats = NDArray[np.float64]
@@ -60,6 +61,10 @@ LOSS = Form(np.negative, lambda values: -_one(values), -1)
 TEMPERATURE = Form(
     noise_figure_of_temperature, lambda kelvin: np.asarray(10.0 / math.log(10.0) / (T0 + kelvin))
 )
+DOUBLE_SIDEBAND = Form(ssb_noise_figure, _one)
+DOUBLE_SIDEBAND_TEMPERATURE = Form(
+    lambda kelvin: ssb_noise_figure(noise_figure_of_temperature(kelvin)), TEMPERATURE.slope
+)
 SIGNAL_TO_ERROR = Form(evm_from_snr, lambda db: -_PER_DB * evm_from_snr(db), -1)
 IMAGE = Form(evm_from_image, lambda db: -_PER_DB * evm_from_image(db), -1)
 CARRIER = Form(evm_from_carrier_leakage, lambda dbc: _PER_DB * evm_from_carrier_leakage(dbc))
@@ -92,6 +97,13 @@ CASCADE_ROLES: dict[str, Role] = {
     "antenna_noise_temperature": Role("source_k", "K", AS_IT_IS),
     "output_power": Role("source_level", "dBm", AS_IT_IS),
     "snr": Role("snr", "dB", AS_IT_IS),
+    "image_rejection": Role("image_rejection", "dB", AS_IT_IS),
+}
+
+#: The same of a mixer whose figure is a double-sideband one: what the law takes is the single-sideband figure.
+DOUBLE_SIDEBAND_ROLES: dict[str, Role] = {
+    "noise_figure": Role("noise_figure", "dB", DOUBLE_SIDEBAND),
+    "noise_temperature": Role("noise_figure", "K", DOUBLE_SIDEBAND_TEMPERATURE),
 }
 
 #: Parameter of a line -> how it becomes a part of an error vector in %.

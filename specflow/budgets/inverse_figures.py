@@ -9,7 +9,17 @@ from numpy.typing import NDArray
 
 from specflow.budgets.chain import Chain, ReadLine
 from specflow.budgets.figures import of_elements
-from specflow.budgets.forms import AS_IT_IS, LOSS, LOSSES, PHASE_NOISE, TEMPERATURE
+from specflow.budgets.forms import (
+    AS_IT_IS,
+    DOUBLE_SIDEBAND,
+    DOUBLE_SIDEBAND_TEMPERATURE,
+    LOSS,
+    LOSSES,
+    PHASE_NOISE,
+    TEMPERATURE,
+)
+from specflow.budgets.image import Turn, mixers_of
+from specflow.budgets.sidebands import LEAST_SINGLE_SIDEBAND_DB
 from specflow.calculators.noise import noise_temperature
 from specflow.model.base import code_key
 from specflow.parameters import Dictionary
@@ -40,6 +50,10 @@ def _inner(read: ReadLine, figure: Floats) -> Floats:
         return figure
     if form is LOSS:
         return -figure
+    if form is DOUBLE_SIDEBAND:
+        return figure - LEAST_SINGLE_SIDEBAND_DB
+    if form is DOUBLE_SIDEBAND_TEMPERATURE:
+        return np.asarray(noise_temperature(np.maximum(figure - LEAST_SINGLE_SIDEBAND_DB, 0.0)))
     if form is TEMPERATURE:
         return np.asarray(noise_temperature(np.maximum(figure, 0.0)))
     return _searched(read, figure)
@@ -85,6 +99,8 @@ def domain(chain: Chain, read: ReadLine) -> tuple[float, float]:
             return -200.0, 0.0 if lossy else 200.0
         case "source_k":
             return 0.0, 1e6
+        case "image_rejection":
+            return 0.0, 300.0
         case "amount":
             unit = parse_unit(read.role.unit)
             if read.role.form is LOSS:
@@ -98,6 +114,9 @@ def domain(chain: Chain, read: ReadLine) -> tuple[float, float]:
 
 def _least_noise(chain: Chain, read: ReadLine) -> float:
     """Return the least noise figure of a position: that of its loss where it is passive, else 0 dB."""
+    mixers = mixers_of(chain)
+    if read.line.sideband == "DSB" or (mixers is not None and mixers.turns[read.row] is Turn.IMAGE):
+        return LEAST_SINGLE_SIDEBAND_DB
     if not chain.positions[read.row].passive:
         return 0.0
     from specflow.calculators.passive_loss import passive_noise_figure

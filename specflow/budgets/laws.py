@@ -12,6 +12,7 @@ import numpy as np
 from specflow.budgets.cascade import CASCADE
 from specflow.budgets.chain import Chain
 from specflow.budgets.outputs import Output
+from specflow.budgets.sidebands import check_sidebands
 from specflow.budgets.sums import sum_output
 from specflow.calculators.passive_loss import passive_noise_figure
 from specflow.errors import CalculationError, DocumentError
@@ -134,6 +135,7 @@ def check_complete(chain: Chain, outputs: Sequence[Output]) -> None:
             _check_positions(chain, output)
             _check_asked(chain, output)
         _check_passive_noise(chain)
+        check_sidebands(chain)
     else:
         _check_terms(chain)
 

@@ -19,6 +19,7 @@ from specflow.budgets.own_conditions import (
     position_maps,
     with_levels,
 )
+from specflow.budgets.physical import physical_ends
 from specflow.budgets.required import Required, required_conditions
 from specflow.budgets.roles import role_of, to_role
 from specflow.conditions.recorded import recorded_numbers
@@ -111,8 +112,10 @@ class _Reader:
             values = values if given is None else np.where(np.isnan(given), values, given)
         if line.growth:
             values = values + self._worse(line, where) * line.growth
-        read = ReadLine(line, self.rows[line.position], role, convert, values, given is not None)
-        check_line(read, self.budget.chain[read.row], where)
+        position = self.budget.chain[self.rows[line.position]]
+        ends = physical_ends(line, role, convert, is_passive=position.passive)
+        read = ReadLine(line, self.rows[line.position], role, convert, values, given is not None, *ends)
+        check_line(read, position, where)
         return read
 
     def _worse(self, line: BudgetLine, where: str) -> float:

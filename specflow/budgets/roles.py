@@ -2,7 +2,16 @@
 
 from __future__ import annotations
 
-from specflow.budgets.forms import AS_IT_IS, CASCADE_ROLES, ERROR_VECTOR_ROLES, GAINS, LOSS, LOSSES, Role
+from specflow.budgets.forms import (
+    AS_IT_IS,
+    CASCADE_ROLES,
+    DOUBLE_SIDEBAND_ROLES,
+    ERROR_VECTOR_ROLES,
+    GAINS,
+    LOSS,
+    LOSSES,
+    Role,
+)
 from specflow.errors import DocumentError, UnitError
 from specflow.model.base import code_key
 from specflow.model.budget import Budget, BudgetLine, Law
@@ -21,7 +30,7 @@ def role_of(budget: Budget, line: BudgetLine, dictionary: Dictionary) -> Role:
                 where=f"budget {budget.id}, {line.place}",
                 hint=f"it takes {', '.join(CASCADE_ROLES)}",
             )
-        return role
+        return DOUBLE_SIDEBAND_ROLES.get(key, role) if line.sideband == "DSB" else role
     if budget.law is Law.ROOT_SUM_OF_SQUARES and code_key(budget.quantity.parameter) == "evm":
         role = ERROR_VECTOR_ROLES.get(key)
         if role is None:

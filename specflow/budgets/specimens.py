@@ -9,17 +9,16 @@ from typing import Literal
 import numpy as np
 from numpy.typing import NDArray
 
-from specflow.budgets.chain import Chain, ReadLine
+from specflow.budgets.chain import Chain
 from specflow.budgets.figures import figures_of
-from specflow.budgets.forms import AS_IT_IS, LOSSES
+from specflow.budgets.forms import AS_IT_IS
+from specflow.budgets.image import mixers_of
 from specflow.budgets.outputs import Output
 from specflow.budgets.paths import groups_of
 from specflow.budgets.spread import moves
 from specflow.calculators.cascade import cascade_results
-from specflow.model.base import code_key
 from specflow.model.budget import Law
 from specflow.model.budget_line import Meaning
-from specflow.units import Converter, converter
 
 Floats = NDArray[np.float64]
 _WIDTH = 4096
@@ -51,25 +50,13 @@ def physical_ends(chain: Chain) -> dict[int, Ends]:
 
     Losses, noise figures and temperatures are never below 0; the gain of a passive block is never above 0 dB.
     """
-    ends: dict[int, Ends] = {}
-    for number, read in enumerate(chain.lines):
-        tolerance = read.line.tolerance
-        if tolerance is None or not moves(read.line) or tolerance.meaning is Meaning.LIMITS:
-            continue  # limits that reach beyond 0 were refused
-        zero = float(_back(read)(0.0))
-        name = code_key(read.line.parameter)
-        if read.role.figure in ("noise_figure", "source_k") or name in LOSSES:
-            ends[number] = (zero, np.inf)
-        elif name == "gain" and chain.positions[read.row].passive:
-            ends[number] = (-np.inf, zero)
-    return ends
-
-
-def _back(read: ReadLine) -> Converter:
-    """Return the conversion from the unit of the law to the line's own."""
-    if read.convert.is_identity:
-        return read.convert
-    return converter(read.convert.target, read.convert.source, log_factor=10)
+    return {
+        number: (read.least, read.most)
+        for number, read in enumerate(chain.lines)
+        if (np.isfinite(read.least) or np.isfinite(read.most))
+        and moves(read.line)
+        and not (read.line.tolerance is not None and read.line.tolerance.meaning is Meaning.LIMITS)
+    }  # limits that reach beyond 0 were refused
 
 
 def results_of(plan: Plan, deviations: Sequence[Floats | None], size: int) -> Iterator[Block]:
@@ -97,7 +84,7 @@ def _straight(chain: Chain, outputs: Sequence[Output], ends: dict[int, Ends]) ->
 
     Such chains, which are most, need no copy between drawing and the law. None where something has to be made first.
     """
-    if groups_of(chain.positions) or chain.budget.law is not Law.CASCADE:
+    if groups_of(chain.positions) or mixers_of(chain) is not None or chain.budget.law is not Law.CASCADE:
         return None
     if {output.parameter for output in outputs} != set(_FUSED) or ends:
         return None

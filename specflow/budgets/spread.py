@@ -34,11 +34,26 @@ def moves(line: BudgetLine) -> bool:
 
 
 def bounds(read: ReadLine) -> tuple[Floats, Floats]:
-    """Return the lowest and the highest value of a line, in its own unit; of k·σ, the k·σ that it states."""
+    """Return the lowest and the highest value of a line, in its own unit.
+
+    Of k·σ it is the k·σ that it states, cut where no block can be (``is_cut``); limits that reach there are refused.
+    """
     tolerance = read.line.tolerance
     if tolerance is None:
         return read.values, read.values
-    return read.values - tolerance.minus, read.values + tolerance.plus
+    low, high = read.values - tolerance.minus, read.values + tolerance.plus
+    if tolerance.meaning is Meaning.SIGMA:
+        return np.maximum(low, read.least), np.minimum(high, read.most)
+    return low, high
+
+
+def is_cut(read: ReadLine) -> bool:
+    """Whether the k·σ of a line reaches where no block can be, so that its bounds are cut there."""
+    tolerance = read.line.tolerance
+    if tolerance is None or tolerance.meaning is not Meaning.SIGMA:
+        return False
+    low, high = read.values - tolerance.minus, read.values + tolerance.plus
+    return bool(np.min(low) < read.least - _SMALL or np.max(high) > read.most + _SMALL)
 
 
 def moments(tolerance: LineTolerance) -> Moments | None:

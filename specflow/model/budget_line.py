@@ -162,7 +162,8 @@ class BudgetLine(Document):
     """One figure of one position: what the block contributes, how far it may move, and how well that is known.
 
     ``shared`` says whether the N elements of a position move together (common) or each by itself (per element).
-    ``growth`` is an allowance that worsens the figure; none unless it is asked for.
+    ``growth`` is an allowance that worsens the figure; none unless it is asked for. ``sideband`` is that of a mixer's
+    noise figure: single, double, or "both", a double-sideband figure where the wanted signal is in both sidebands.
     """
 
     position: int
@@ -175,7 +176,7 @@ class BudgetLine(Document):
     correlation_group: str = ""
     shared: Literal["common", "per element"] = "common"
     growth: float = Field(default=0.0, ge=0)
-    sideband: Literal["", "SSB", "DSB"] = ""
+    sideband: Literal["", "SSB", "DSB", "both"] = ""
     maturity: Maturity = Maturity.ESTIMATED
     source: str = ""
 

@@ -35,6 +35,7 @@ class LineForm(StrEnum):
     AS_IT_IS = "as it is"
     LOSS = "loss"  # a gain with the other sign
     TEMPERATURE = "temperature"  # a noise temperature as a noise figure
+    DOUBLE_SIDEBAND = "double sideband"  # a double-sideband noise figure as a single-sideband one
     SIGNAL_TO_ERROR = "signal to error"  # a ratio in dB as an error vector
     LEAKAGE = "leakage"  # an unwanted level in dBc as an error vector
     PHASE_NOISE = "phase noise"  # a phase error in degrees as an error vector
@@ -155,7 +156,9 @@ class BudgetOutcome:
     ``places`` are the conditions in words; ``figures`` (positions, n) what the law took; ``levels`` (positions + 1, n)
     the level at the input and behind each position in dBm; ``noise`` the noise level there in the bandwidth of the
     budget, or None. ``temperature_k`` (positions, n) is NaN where no temperature is stated. ``source_k`` is the noise
-    temperature of what feeds the chain. ``worst`` is the place and the requirement with the smallest margin.
+    temperature of what feeds the chain. ``turns`` says of each position whether it is a mixer whose image noise is
+    followed ("image"), another mixer ("plain") or none; empty where no image noise counts. ``worst`` is the place and
+    the requirement with the smallest margin.
     """
 
     budget: Budget
@@ -168,6 +171,7 @@ class BudgetOutcome:
     levels: Floats | None = None
     noise: Floats | None = None
     source_k: Floats | None = None
+    turns: tuple[str, ...] = ()
     worst: tuple[str, int] | None = None
     ways: tuple[WayOutcome, ...] = ()
     chances: tuple[ChanceOutcome, ...] = ()

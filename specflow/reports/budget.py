@@ -25,6 +25,8 @@ from specflow.reports.figures import DASH, interval, margin, number, rounded, te
 FIGURE_TITLES = {
     "gain": ("Gain", "dB"),
     "noise_figure": ("NF", "dB"),
+    "image_rejection": ("Image rejection", "dB"),
+    "image_noise_figure": ("NF with image", "dB"),
     "iip3": ("IIP3", "dBm"),
     "iip2": ("IIP2", "dBm"),
     "ip1db": ("IP1dB", "dBm"),
@@ -133,7 +135,7 @@ def _gives(outcome: BudgetOutcome, parameter: str) -> bool:
 
 def _is_told(outcome: BudgetOutcome, figure: str) -> bool:
     """Whether any line states a figure; what nobody states is not shown as a column of zeros."""
-    return any(line.figure == figure for line in outcome.lines)
+    return figure == "image_noise_figure" or any(line.figure == figure for line in outcome.lines)
 
 
 def _cumulative_row(
@@ -162,6 +164,7 @@ def _own(outcome: BudgetOutcome, row: int, place: int, figure: str) -> ReportCel
     """Return one figure of one position; a dash where no line states it and none follows."""
     lines = [line for line in outcome.lines if line.row == row and line.figure == figure]
     makes_noise = figure == "noise_figure" and outcome.positions[row].passive
+    makes_noise |= figure == "image_noise_figure" and outcome.turns[row] == "image"
     if not lines and not makes_noise:
         return ReportCell(text=DASH, tone=CellTone.QUIET)
     value = float(outcome.figures[figure][row, place])

@@ -15,10 +15,10 @@ from specflow.model.budget_outcome import BudgetOutcome, LineOutcome
 from specflow.model.formula_sheet import CellLook
 from specflow.reports.budget import FIGURE_TITLES, position_words, tolerance_words
 from specflow.reports.calculation_forms import taken_term
-from specflow.reports.calculation_grid import Grid, Term, cell_name, plain
+from specflow.reports.calculation_grid import Grid, Maker, Term, cell_name, plain
+from specflow.reports.calculation_image import image_columns
 
 Named = Callable[[str], str]
-Maker = Callable[[int, Term], Term | None]
 BOLTZMANN = 1.380649e-23
 """J/K, exact in the SI."""
 T0 = 290.0
@@ -132,7 +132,7 @@ class ChainTable:
     def _chain(self) -> None:
         figures = [name for name in FIGURE_TITLES if name in self.outcome.figures and name != "source_k"]
         figures = [name for name in figures if name in ("gain", "noise_figure") or self._stated(name)]
-        figures = [name for name in figures if name not in ("source_level", "snr")]
+        figures = [name for name in figures if name not in ("source_level", "snr", "image_noise_figure")]
         start = self.row
         columns = self._columns(figures)
         for column, (title, _) in enumerate(columns, start=_LEFT):
@@ -168,6 +168,9 @@ class ChainTable:
             add(name, f"{title} [{unit}]", partial(self._figure, name))
         if "gain" in figures:
             add("gain_sum", "∑ Gain [dB]", lambda row, _: self._sum("gain", row))
+        if self.outcome.turns:
+            for key, title, make in image_columns(self):
+                add(key, title, make)
         if "noise_figure" in figures:
             add("excess", "(F-1)/G before", self._excess)
             add("nf_sum", "∑ NF [dB]", lambda row, _: self._noise_sum(row))
@@ -195,7 +198,7 @@ class ChainTable:
         if figure == "noise_figure" and not lines:
             return self._noise_of_loss(row)
         if not lines:
-            return Term("0", 0.0) if figure == "gain" else None
+            return Term("0", 0.0) if figure in ("gain", "image_rejection") else None
         terms = [taken_term(one.form, stated) for one, stated in lines]
         if figure in _PORTS:
             return self._at_input(row, figure, lines[0][0], terms[0], count)
@@ -260,7 +263,8 @@ class ChainTable:
     # Noise
 
     def _excess(self, row: int, count: Term) -> Term:
-        noise, before = self.own("noise_figure", row), self._before(row)
+        figure = "image_noise_figure" if self.outcome.turns else "noise_figure"
+        noise, before = self.own(figure, row), self._before(row)
         value = (10.0 ** (noise.value / 10.0) - 1.0) / 10.0 ** (before.value / 10.0)
         return Term(f"(10^({noise.text}/10)-1)/10^({before.text}/10)", value)
 

@@ -16,6 +16,8 @@ def taken_term(form: LineForm, stated: Term) -> Term:
             return Term(f"(-{cell})", -value)
         case LineForm.TEMPERATURE:
             return Term(f"10*LOG10(1+{cell}/290)", 10.0 * math.log10(1.0 + value / 290.0))
+        case LineForm.DOUBLE_SIDEBAND:
+            return Term(f"({cell}+10*LOG10(2))", value + 10.0 * math.log10(2.0))
         case LineForm.SIGNAL_TO_ERROR:
             return Term(f"100*10^(-{cell}/20)", 100.0 * 10.0 ** (-value / 20.0))
         case LineForm.LEAKAGE:

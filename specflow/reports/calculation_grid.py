@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Callable
 from dataclasses import dataclass, field
 
 from specflow.model.formula_sheet import CellLook, FormulaCell
@@ -33,6 +34,10 @@ def cell_name(row: int, column: int, *, fixed: bool = False) -> str:
     """Return the reference of a cell, rows and columns counted from 0."""
     letters = column_letters(column + 1)
     return f"${letters}${row + 1}" if fixed else f"{letters}{row + 1}"
+
+
+Maker = Callable[[int, Term], Term | None]
+"""Makes the cell of a column at one position, from its row and the cell of its number of elements."""
 
 
 @dataclass(slots=True)

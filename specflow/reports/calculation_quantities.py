@@ -73,7 +73,13 @@ def _temperature(chain: ChainTable, row: int) -> Term:
 def _system(chain: ChainTable, row: int) -> Term:
     source = chain.fixed.get("source") or chain.whole("source_k")
     own = _temperature(chain, row)
-    return Term(f"({source.text}+{own.text})", source.value + own.value)
+    found = Term(f"{source.text}+{own.text}", source.value + own.value)
+    if (
+        chain.outcome.turns
+    ):  # noise figures count the image of the source at 290 K; put what it is in its place
+        weight, t0 = chain.own("image_weight", row), chain.fixed["t0"]
+        found += Term(f"{weight.text}*({source.text}-{t0.text})", weight.value * (source.value - T0))
+    return Term(f"({found.text})", found.value)
 
 
 def _noise_power(chain: ChainTable, row: int, *, with_bandwidth: bool) -> Term:

@@ -25,16 +25,19 @@ from specflow.budgets import (
     slopes_of,
     worst_case,
 )
+from specflow.budgets.cascade_noise import source_at_images
 from specflow.budgets.figures import figures_of, of_elements
 from specflow.budgets.forms import (
     AS_IT_IS,
     CARRIER,
+    DOUBLE_SIDEBAND,
     IMAGE,
     LOSS,
     PHASE_NOISE,
     SIGNAL_TO_ERROR,
     TEMPERATURE,
 )
+from specflow.budgets.image import mixers_of
 from specflow.budgets.root_sum import MOST_BEND
 from specflow.calculators.decibel import BOLTZMANN, T0
 from specflow.calculators.noise_cascade import cumulative_noise_figure
@@ -72,6 +75,7 @@ FORMS = {
     AS_IT_IS: LineForm.AS_IT_IS,
     LOSS: LineForm.LOSS,
     TEMPERATURE: LineForm.TEMPERATURE,
+    DOUBLE_SIDEBAND: LineForm.DOUBLE_SIDEBAND,
     SIGNAL_TO_ERROR: LineForm.SIGNAL_TO_ERROR,
     IMAGE: LineForm.SIGNAL_TO_ERROR,
     CARRIER: LineForm.LEAKAGE,
@@ -134,7 +138,9 @@ def _gone(
     budget = outcome.budget
     match way:
         case Way.WORST_CASE:
-            return outcome, _worst_ways(worst_case(budget, snapshot, dictionary))
+            found = worst_case(budget, snapshot, dictionary)
+            notes = dict.fromkeys((*outcome.notes, *found.notes))
+            return replace(outcome, notes=tuple(notes)), _worst_ways(found)
         case Way.RSS:
             return outcome, _rss_ways(rss(budget, snapshot, dictionary))
         case Way.MONTE_CARLO:
@@ -169,6 +175,7 @@ def _nominal(result: BudgetResult) -> BudgetOutcome:
         )
     worst = result.worst
     source = _source(result)
+    mixers = mixers_of(result.chain) if "image_rejection" in result.figures.arrays else None
     return BudgetOutcome(
         budget=result.budget,
         places=tuple(result.required.words(place) for place in range(size)),
@@ -182,14 +189,21 @@ def _nominal(result: BudgetResult) -> BudgetOutcome:
         else np.broadcast_to(result.levels, (len(result.positions) + 1, size)),
         noise=_noise(result, source),
         source_k=source,
+        turns=() if mixers is None else tuple(turn.value for turn in mixers.turns),
         worst=None if worst is None else (worst.requirement.id, worst.worst),
         notes=result.notes,
     )
 
 
 def _figures(result: BudgetResult) -> Mapping[str, Floats]:
-    """Return what the laws took, and the compression points of blocks where levels can be held against them."""
+    """Return what the laws took, and the compression points of blocks where levels can be held against them.
+
+    Of a mixer whose image noise counts both noise figures are there: as stated, and with the noise at its image.
+    """
     arrays = result.figures.arrays
+    if "image_rejection" in arrays:
+        stated, taken = result.figures.stages["noise_figure"], arrays["noise_figure"]
+        arrays = {**arrays, "noise_figure": stated, "image_noise_figure": taken}
     states_compression = any(one.role.figure == "ip1db" for one in result.chain.lines)
     if not states_compression or "ip1db" in arrays or result.levels is None:
         return arrays
@@ -260,7 +274,8 @@ def _noise(result: BudgetResult, source: Floats | None) -> Floats | None:
         return None
     gain = _spread(result.figures["gain"], result)
     factor = 10.0 ** (cumulative_noise_figure(gain, _spread(result.figures["noise_figure"], result)) / 10.0)
-    kelvin = np.vstack([source, source + T0 * (factor - 1.0)])
+    at_images = np.zeros_like(gain) + source_at_images(result.figures)
+    kelvin = np.vstack([source, source + T0 * (factor - 1.0) + at_images])
     behind = np.vstack([np.zeros(result.required.size), np.cumsum(gain, axis=0)])
     return np.asarray(10.0 * np.log10(kelvin * BOLTZMANN * bandwidth * 1e3) + behind)
 

@@ -409,3 +409,22 @@ def test_a_power_sum_and_a_plain_sum_have_worst_cases_too() -> None:
     found = worst_case(budget, project_of(budget, limit=at_most(50, "dBm")), DICTIONARY).of("eirp")
     assert found.high[0] == pytest.approx(44.0103, abs=1e-4)
     assert found.low[0] == pytest.approx(42.0103, abs=1e-4)
+
+
+def test_k_sigma_of_a_noise_figure_ends_at_0_db_and_says_so() -> None:
+    """0.3 dB ± 0.5 dB (2σ): the favourable end is a noiseless stage, not one of -0.2 dB."""
+    budget = a_chain(
+        {"block": "LNA", "gain": 20.0, "noise_figure": 0.3, "more": {"noise_figure": sigma(0.5)}}
+    )
+    found = worst_case(budget, project_of(budget), DICTIONARY)
+    assert (found.of("noise_figure").low[0], found.of("noise_figure").high[0]) == pytest.approx((0.0, 0.8))
+    assert any("cut at 0 dB" in note and "LNA noise_figure" in note for note in found.notes)
+
+
+def test_k_sigma_of_a_passive_loss_ends_at_0_db() -> None:
+    loss = {"block": "FIL", "insertion_loss": 0.2, "passive": True, "more": {"insertion_loss": sigma(0.5)}}
+    gain = {"block": "FIL", "gain": -0.2, "passive": True, "more": {"gain": sigma(0.5)}}
+    for stage in (loss, gain):
+        budget = a_chain(stage, parameter="gain")
+        found = worst_case(budget, project_of(budget), DICTIONARY).of("gain")
+        assert (found.low[0], found.high[0]) == pytest.approx((-0.7, 0.0))

@@ -28,13 +28,14 @@ ALWAYS = """<?xml version="1.0" encoding="UTF-8"?>
 <value>0</value></prop></item></oor:items>"""
 
 
-def sheet(intermodulation: str) -> FormulaSheet:
+def sheet(intermodulation: str, *, with_image: bool = False) -> FormulaSheet:
     budget = receiver.a_receiver(*ALL, intermodulation=intermodulation)
+    budget = receiver.with_image(budget) if with_image else budget
     made = receiver.outcome(budget, HowToCompute(ways=()), ALL)
     return calculation_sheet(made, made.place, NAMED)
 
 
-SHEETS = (sheet("coherent"), sheet("non-coherent"))
+SHEETS = (sheet("coherent"), sheet("non-coherent"), sheet("coherent", with_image=True))
 
 
 def render(*sheets: FormulaSheet) -> bytes:
@@ -58,7 +59,11 @@ def test_text_is_text_whatever_it_begins_with() -> None:
 
 def test_sheets_of_one_title_are_told_apart_and_the_bytes_are_the_same_each_time() -> None:
     content = render(*SHEETS)
-    assert load_workbook(io.BytesIO(content)).sheetnames == ["Budget B-RX", "Budget B-RX (2)"]
+    assert load_workbook(io.BytesIO(content)).sheetnames == [
+        "Budget B-RX",
+        "Budget B-RX (2)",
+        "Budget B-RX (3)",
+    ]
     assert render(*SHEETS) == content
 
 

@@ -52,6 +52,13 @@ def test_every_quantity_by_hand_is_what_the_tool_computes(intermodulation: str) 
     assert max(found) < 1e-9
 
 
+def test_image_noise_is_followed_by_hand_along_two_conversions() -> None:
+    budget = receiver.with_image(receiver.a_receiver(*ALL))
+    made = calculation_sheet(receiver.outcome(budget, NOMINAL, ALL), 3, NAMED)
+    assert any(cell.text == "NF with image [dB]" for cell in cells(made))
+    assert max(differences(made)) < 1e-9
+
+
 def test_no_quantity_of_a_cascade_is_left_out() -> None:
     assert set(quantities(Law.CASCADE)) == set(ALL)
 

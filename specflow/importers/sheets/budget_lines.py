@@ -20,7 +20,7 @@ from specflow.model.conditions import ConditionMap, ConditionsSet
 from specflow.model.sheet import EXAMPLE, SheetColumn, SheetLayout
 
 _SHARED: tuple[str, ...] = get_args(BudgetLine.model_fields["shared"].annotation)
-_SIDEBANDS = ("SSB", "DSB")
+_SIDEBANDS = ("SSB", "DSB", "both")
 
 LAYOUT = SheetLayout(
     noun="budget",
@@ -178,7 +178,8 @@ LAYOUT = SheetLayout(
             key="sideband",
             title="Sideband",
             field="lines",
-            guidance="Of a mixer's noise figure: SSB or DSB.",
+            guidance="Of a mixer's noise figure. With image_rejection lines the noise at its image counts; DSB needs "
+            "them. both: a DSB figure, and the wanted signal is in both sidebands.",
             choices=_SIDEBANDS,
             width=10,
         ),
