@@ -16,11 +16,12 @@ from specflow.model.parameter import QuantityIdentity
 
 
 class InputColumn(Document):
-    """A value column that a law read: of which table, and as what (``role``; "value" where a law reads one)."""
+    """A value column that a law read: of which table, as what (``role``), and the rows of it that were meant."""
 
     role: str
     table: Code
     column: str
+    where: tuple[str, ...] = ()
 
 
 class Covered(Document):

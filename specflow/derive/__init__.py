@@ -1,0 +1,41 @@
+"""Derive: traces and grids become derived evidence, by named laws.
+
+What may live here:
+
+- ``LAWS`` the one list of all laws, with what each needs, its settings, formula and source
+- ``law`` an entry of the list and what a law gives; ``samples`` what it is handed
+- ``said`` settings, ranges and choices of rows, read from what a person says; ``grouping`` rows that belong together;
+  ``coverage`` whether they cover the range; ``table`` a law applied to stored tables
+- every other module: the laws of one family (over a range, of a pattern, of a power sweep ...)
+
+A law is a pure function on float64 arrays. It refuses what it cannot do: a range that is not covered is refused with
+the range that is there, never clamped or extrapolated. Nothing here judges. To add one: write the function with
+formula, validity and source in its docstring, and list it in the table of its family.
+"""
+
+from __future__ import annotations
+
+from specflow.derive.law import Law, Outcome, Setting
+from specflow.derive.ranges import RANGE_LAWS
+from specflow.derive.said import complete_settings
+from specflow.derive.table import Derived, Refused, Request, Role, derive_table
+
+LAWS: tuple[Law, ...] = (*RANGE_LAWS,)
+
+LAW_BY_NAME = {law.name: law for law in LAWS}
+
+__all__ = [
+    "LAWS",
+    "LAW_BY_NAME",
+    "Derived",
+    "Law",
+    "Outcome",
+    "Readings",
+    "Refused",
+    "Request",
+    "Role",
+    "Samples",
+    "Setting",
+    "complete_settings",
+    "derive_table",
+]

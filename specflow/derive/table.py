@@ -1,0 +1,343 @@
+"""A law applied to stored tables: one derived row a group of all other conditions and item."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.conditions.words import value_words
+from specflow.derive.coverage import covered_rows
+from specflow.derive.grouping import grouped_rows
+from specflow.derive.joining import Joined, joined
+from specflow.derive.law import Law, Outcome
+from specflow.derive.said import SaidRange, read_over, typed_settings
+from specflow.derive.samples import Range, Readings, Samples
+from specflow.errors import CalculationError, DocumentError, UnitError
+from specflow.model.columns import Columns, TextColumn
+from specflow.model.derivation import Covered
+from specflow.model.evidence import SOURCE_COLUMN, EvidenceColumns, EvidenceTable, ValueArrays
+from specflow.model.parameter import Parameter
+from specflow.units import compatible, parse_unit
+
+Floats = NDArray[np.float64]
+Rows = NDArray[np.intp]
+
+#: The extra column of derived tables that says where along the axis a result lies.
+AT_COLUMN = "at"
+
+
+@dataclass(frozen=True, slots=True)
+class Role:
+    """A value column that a law reads: its table and arrays, its name, and the rows of it that are meant."""
+
+    name: str
+    table: EvidenceTable
+    columns: EvidenceColumns
+    column: str
+    where: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class Request:
+    """A law, the columns that it reads, what was said to it (settings complete), and the parameter that it gives."""
+
+    law: Law
+    roles: tuple[Role, ...]
+    settings: Mapping[str, str]
+    gives: Parameter
+    over: tuple[str, ...] = ()
+    where: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class Refused:
+    """A group of rows from which the law could not be made: which one, why, and what would help."""
+
+    group: str
+    why: str
+    remedy: str
+
+
+@dataclass(frozen=True, slots=True)
+class Result:
+    """One derived row in words and figures, for a preview."""
+
+    group: str
+    value: float
+    high: float
+    u: float
+    at: str
+    readings: int
+
+
+@dataclass(frozen=True)
+class Derived:
+    """What a law made: the arrays of the derived table with its unit, and what is to be told.
+
+    ``covers``: the range that the values speak for. ``u_rule``: where u comes from, "" where the law knows no rule.
+    """
+
+    columns: EvidenceColumns
+    name: str
+    unit: str
+    u_rule: str
+    covers: tuple[Covered, ...]
+    results: tuple[Result, ...]
+    refused: tuple[Refused, ...] = ()
+    notes: tuple[str, ...] = ()
+
+
+@dataclass
+class _Gathered:
+    """What the groups gave so far."""
+
+    outcomes: list[tuple[Rows, Outcome]] = field(default_factory=list)
+    results: list[Result] = field(default_factory=list)
+    refused: list[Refused] = field(default_factory=list)
+    notes: dict[str, None] = field(default_factory=dict)
+    largest_gap: float = 0.0
+
+
+def derive_table(request: Request) -> Derived:
+    """Apply a law to each group of rows that agree in item and all conditions that the law does not run over.
+
+    A group from which the law cannot be made is refused and told; raises CalculationError when none is left, and
+    DocumentError when what was said does not suit the law or the tables.
+    """
+    rows = joined(request.roles, request.where)
+    over = _over(request)
+    axes = _axes(request, rows, over)
+    apart = {*axes, *rows.told_apart}
+    found = _Gathered()
+    for group in grouped_rows(rows.conditions, rows.items, np.arange(rows.size), apart):
+        _add_group(found, request, rows, axes, over, group)
+    if not found.outcomes:
+        _refuse_all(request, found)
+    return _derived(request, rows, over, apart, found)
+
+
+def _over(request: Request) -> SaidRange | None:
+    law = request.law
+    if law.over != "range":
+        if request.over:
+            raise DocumentError(f"the law {law.name} runs over no range", hint="leave --over out")
+        return None
+    if len(request.over) != 1:
+        raise DocumentError(
+            f"the law {law.name} runs over one stated range",
+            hint="say --over 'frequency 17.7..20.2 GHz step 0.1 GHz'",
+        )
+    return read_over(request.over[0])
+
+
+def _axes(request: Request, rows: Joined, over: SaidRange | None) -> dict[str, Floats]:
+    if over is not None:
+        return {over.dimension: rows.numbers(over.dimension, over.unit)}
+    if request.law.over == "directions":
+        return rows.directions()
+    return {}
+
+
+def _add_group(
+    found: _Gathered,
+    request: Request,
+    rows: Joined,
+    axes: Mapping[str, Floats],
+    over: SaidRange | None,
+    group: Rows,
+) -> None:
+    words = rows.words(group[0], {*axes, *rows.told_apart})
+    try:
+        taken, gap = _taken(rows, axes, over, group)
+        outcome = request.law.function(_samples(request, rows, axes, over, taken))
+        _check_unit(request, outcome)
+    except (CalculationError, UnitError) as error:
+        found.refused.append(Refused(words, error.message, error.hint))
+        return
+    found.largest_gap = max(found.largest_gap, gap)
+    at = outcome.at or tuple(_place(rows, axes, over, int(taken[row])) for row in outcome.rows)
+    high = outcome.value if outcome.high is None else outcome.high
+    u = np.full(len(outcome.value), np.nan) if outcome.u is None else outcome.u
+    for place in range(len(outcome.value)):
+        found.results.append(
+            Result(
+                words, float(outcome.value[place]), float(high[place]), float(u[place]), at[place], len(taken)
+            )
+        )
+    found.notes.update(dict.fromkeys(outcome.notes))
+    found.outcomes.append((taken, outcome))
+
+
+def _taken(
+    rows: Joined, axes: Mapping[str, Floats], over: SaidRange | None, group: Rows
+) -> tuple[Rows, float]:
+    """Return the rows of a group that the law reads, ascending along its range, and the largest gap."""
+    has_value = rows.has_value[group]
+    if over is None:
+        if not has_value.all():
+            raise CalculationError(
+                f"{np.count_nonzero(~has_value)} of {len(group)} rows have no value",
+                hint="the law needs all of them; read the cells that were rejected, or choose rows with --where",
+            )
+        return group, 0.0
+    along = axes[over.dimension][group]
+    covered = covered_rows(along, has_value, over.range, over.dimension, over.unit)
+    return group[covered.rows], covered.largest_gap
+
+
+def _samples(
+    request: Request, rows: Joined, axes: Mapping[str, Floats], over: SaidRange | None, taken: Rows
+) -> Samples:
+    law = request.law
+    values = {role.name: rows.readings(role.name).take(taken) for role in request.roles}
+    if not law.takes_bounds and any((one.low != one.high).any() for one in values.values()):
+        raise CalculationError(
+            "some readings are bounds (less than, more than), which the law cannot take",
+            hint="the law worst takes bounds",
+        )
+    own = {name: axis[taken] for name, axis in axes.items()}
+    if over is not None and not law.takes_repeats:
+        _refuse_repeats(own[over.dimension], over)
+    first = request.roles[0].name
+    unit = over.unit if over is not None else ""
+    settings = typed_settings(law, request.settings, axis_unit=unit, value_unit=values[first].unit)
+    units = dict.fromkeys(own, unit if over is not None else "deg")
+    axis, span = (over.dimension, over.range) if over is not None else ("", None)
+    return Samples(values, own, units, axis, span, settings, request.gives)
+
+
+def _refuse_repeats(along: Floats, over: SaidRange) -> None:
+    again = np.flatnonzero(np.diff(along) == 0)
+    if len(again):
+        place = value_words(over.dimension, float(along[again[0]]), over.unit)
+        raise CalculationError(
+            f"there are several readings at {place} under the same conditions",
+            hint="tell the sweeps apart by a condition (run, state), or choose rows with --where",
+        )
+
+
+def _check_unit(request: Request, outcome: Outcome) -> None:
+    own, wanted = parse_unit(outcome.unit or "1"), parse_unit(request.gives.unit or "1")
+    if not compatible(own, wanted) and not (own.is_log != wanted.is_log and own.kind is wanted.kind):
+        raise DocumentError(
+            f"the law {request.law.name} gives {outcome.unit or 'a plain number'} here; "
+            f"{request.gives.key} is in {request.gives.unit}",
+            hint="name the parameter that it gives with --gives",
+        )
+
+
+def _place(rows: Joined, axes: Mapping[str, Floats], over: SaidRange | None, row: int) -> str:
+    unit = over.unit if over is not None else "deg"
+    return ", ".join(value_words(name, float(axis[row]), unit) for name, axis in axes.items())
+
+
+def _refuse_all(request: Request, found: _Gathered) -> None:
+    if not found.refused:
+        tables = ", ".join(dict.fromkeys(role.table.id for role in request.roles))
+        raise DocumentError(
+            "no row was chosen", where=tables, hint="look at --where and the conditions of the rows"
+        )
+    first = found.refused[0]
+    more = f" (and {len(found.refused) - 1} more groups)" if len(found.refused) > 1 else ""
+    table = request.roles[0].table.id
+    raise CalculationError(
+        f"{first.why}{more}", where=", ".join(filter(None, [table, first.group])), hint=first.remedy
+    )
+
+
+def _derived(
+    request: Request, rows: Joined, over: SaidRange | None, apart: set[str], found: _Gathered
+) -> Derived:
+    outcomes = [outcome for _, outcome in found.outcomes]
+    units = {outcome.unit for outcome in outcomes}
+    if len(units) > 1:
+        raise DocumentError(f"the groups give different units: {', '.join(sorted(units))}")
+    governing = np.concatenate([taken[outcome.rows] for taken, outcome in found.outcomes])
+    covers = _covers(over, found, outcomes)
+    rules = {outcome.u_rule for outcome in outcomes if outcome.u is not None}
+    return Derived(
+        _columns(request, rows, apart, found, governing),
+        request.gives.key,
+        outcomes[0].unit,
+        ", ".join(sorted(rules)),
+        covers,
+        tuple(found.results),
+        tuple(found.refused),
+        (*rows.notes, *found.notes),
+    )
+
+
+def _covers(over: SaidRange | None, found: _Gathered, outcomes: Sequence[Outcome]) -> tuple[Covered, ...]:
+    if over is None or any(over.dimension in outcome.axes for outcome in outcomes):
+        return ()
+    span: Range = over.range
+    return (
+        Covered(
+            dimension=over.dimension,
+            low=span.low,
+            high=span.high,
+            largest_gap=found.largest_gap,
+            unit=over.unit,
+        ),
+    )
+
+
+def _columns(
+    request: Request, rows: Joined, apart: set[str], found: _Gathered, governing: Rows
+) -> EvidenceColumns:
+    base = request.roles[0].columns
+    outcomes = [outcome for _, outcome in found.outcomes]
+    origin = rows.base_rows[governing]
+    low = np.concatenate([outcome.value for outcome in outcomes])
+    high = np.concatenate([outcome.value if outcome.high is None else outcome.high for outcome in outcomes])
+    spread = [np.full(len(o.value), np.nan) if o.u is None else o.u for o in outcomes]
+    u = None if all(outcome.u is None for outcome in outcomes) else np.concatenate(spread)
+    extra = {AT_COLUMN: TextColumn.of([result.at for result in found.results])}
+    if SOURCE_COLUMN in base.extra:
+        extra[SOURCE_COLUMN] = base.extra[SOURCE_COLUMN].take(origin)
+    return EvidenceColumns(
+        conditions=_conditions(rows, apart, governing, outcomes),
+        values={request.gives.key: ValueArrays(low, low if np.array_equal(low, high) else high, u)},
+        source_rows=base.source_rows[origin],
+        items=base.items.take(origin),
+        dates=None if base.dates is None else _earliest(base.dates, rows, found),
+        extra=extra,
+    )
+
+
+def _conditions(rows: Joined, apart: set[str], governing: Rows, outcomes: Sequence[Outcome]) -> Columns:
+    kept = rows.conditions.take(governing)
+    numeric = {name: values for name, values in kept.numeric.items() if name not in apart}
+    text = {name: words for name, words in kept.text.items() if name not in apart}
+    units = {name: unit for name, unit in kept.units.items() if name in numeric}
+    for name in dict.fromkeys(name for outcome in outcomes for name in outcome.axes):
+        numeric[name] = np.concatenate([outcome.axes[name] for outcome in outcomes])
+        units[name] = rows.said_units.get(name, rows.conditions.units.get(name, ""))
+    return Columns(len(governing), numeric, text, units)
+
+
+def _earliest(dates: TextColumn, rows: Joined, found: _Gathered) -> TextColumn:
+    """Return the earliest date among the rows of each group: what changed since then may touch the result."""
+    words: list[str | None] = []
+    for taken, outcome in found.outcomes:
+        known = [word for row in rows.base_rows[taken] if (word := dates.word(int(row)))]
+        whole = len(known) == len(taken)
+        words += [min(known) if known and whole else None] * len(outcome.value)
+    return TextColumn.of(words)
+
+
+def covered_words(covers: Sequence[Covered]) -> str:
+    """Say what derived values speak for: "17.7 to 20.2 GHz, largest gap 0.1 GHz"."""
+    from specflow.conditions.words import difference_words, range_words
+
+    return "; ".join(
+        f"{range_words(one.dimension, one.low, one.high, one.unit)}, largest gap "
+        f"{difference_words(one.largest_gap, one.unit)}"
+        for one in covers
+    )
+
+
+__all__ = ["AT_COLUMN", "Derived", "Readings", "Refused", "Request", "Result", "Role", "derive_table"]
