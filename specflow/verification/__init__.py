@@ -6,9 +6,10 @@ Where things live:
 - ``standing`` may a record count; ``changed`` what a change record touches; ``dates`` when people decided
 - ``comparable`` may it be compared; ``residuals`` readings near an instrument's floor
 - ``records`` the readings of one quantity, tables stacked (``stacking``); ``map_choice`` whose conditions they state
-- ``limit_inputs`` what a limit is evaluated at; ``readings`` readings judged against it; ``judging`` by its shape;
-  ``populations`` statistics of many values; ``sweeps`` masks over an axis of the evidence's own; ``spectrum`` what a
-  bandwidth does to a reading, ``bandwidths`` limits that state theirs; ``model_range`` validated models
+- ``limit_inputs`` what a limit is evaluated at; ``readings`` readings judged against it; ``judging`` by its shape,
+  ``grouped`` where other readings count too; ``populations`` statistics of many values; ``sweeps`` masks over an
+  axis of the evidence's own; ``spectrum`` what a bandwidth does to a reading, ``bandwidths`` limits that state
+  theirs; ``model_range`` validated models
 - ``credit`` rank and credit of evidence; ``grid`` which readings weigh at each point and item; ``points`` what governs
   there; ``conflicts`` contradictions
 - ``alternatives`` limits with members on different quantities, put together

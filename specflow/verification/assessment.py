@@ -204,7 +204,10 @@ def _bench(requirement: Requirement, activity: Activity, ground: Ground, workspa
     weights = credit(activity, requirement.provers, ground.records, ground.served.record, workspace)
     readings = ground.readings
     if readings is None:
-        readings, weights = ground.judging.among_others(ground.served, weights)
+        # What judges statistics, allowances and sweeps is long to load, and most projects have few of them.
+        from specflow.verification.grouped import judge_grouped
+
+        readings, weights = judge_grouped(ground.judging, ground.served, weights)
     return Bench(
         ground.points,
         ground.matching,

@@ -44,6 +44,12 @@ _ITEM_NAMES = frozenset({"item", "items", "unit", "units", "serial", "sample", "
 _SPHERE_NAMES = frozenset({"sphere", "direction", "directions", "angle", "angles"})
 
 
+def over_items(node: Population) -> bool:
+    """Whether a statistic is one of the values of all items."""
+    over = {name.casefold() for name in node.over}
+    return bool(over & _ITEM_NAMES) or isinstance(node.statistic, ToleranceBound)
+
+
 @dataclass(frozen=True, slots=True)
 class Statistic:
     """The population limit of a requirement: what is judged, over what, and how many values are needed."""
@@ -56,8 +62,7 @@ class Statistic:
     @property
     def over_items(self) -> bool:
         """Whether the values of all items belong together."""
-        over = {name.casefold() for name in self.node.over}
-        return bool(over & _ITEM_NAMES) or isinstance(self.node.statistic, ToleranceBound)
+        return over_items(self.node)
 
     @property
     def over_sphere(self) -> bool:
