@@ -1,0 +1,262 @@
+"""What comments of a Touchstone file say about how it is to be read: columns, x axis, port names, port impedances.
+
+Comments are no part of the format, so nothing here changes a number. What speaks against the plain reading becomes a
+doubt, which a person settles; the rest is said.
+"""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.importers.readers.touchstone_network import (
+    Comment,
+    Complexes,
+    Doubt,
+    DoubtKind,
+    Floats,
+    PairFormat,
+    Remark,
+)
+
+_ENTRY = re.compile(
+    r"(?:^|(?<=[^A-Za-z0-9])|(?<=mag)|(?<=ang)|(?<=db)|(?<=re)|(?<=im)|(?<=deg)|(?<=arg)|(?<=phase))"
+    r"(?P<letter>[SYZGH])[ _]?"
+    r"(?:[(\[]\s*(\d+)\s*[,;:]\s*(\d+)\s*[)\]]|(\d)(\d)(?!\d)|(\d+)[_,:](\d+))",
+    re.IGNORECASE,
+)
+_FREQUENCY = re.compile(r"freq|hz\b|^\W*f\b", re.IGNORECASE)
+_OTHER_AXIS = re.compile(
+    r"\b(?:p_?in|p_?out|p_?avs?|p_?drive|p_?rf|power|pwr|dbm|v_?bias|voltage|current|bias|temp\w*|time|v_?gs?|v_?ds?)\b",
+    re.IGNORECASE,
+)
+_SWEPT = re.compile(
+    r"power[ _-]*sweep|swept[ _-]*power|\bpower (?:is|was) swept|(?:start|stop|from)\b[^=:]*[=:]?\s*[-+\d.]+\s*dBm\b"
+    r"|sweep(?:[ _](?:type|mode|variable|parameter))?\s*[:=]\s*(?:\w+ )*(?:power|pwr|p_?in|cw|time|voltage|bias)\b"
+    r"|x[ -]?axis\s*[:=](?!\s*freq)",
+    re.IGNORECASE,
+)
+_PORT_IS = re.compile(
+    r"\bport\s*[\[<(]?\s*(?P<number>\d+)\s*[\]>)]?\s*(?:=|:|is\b|->)\s*(?P<name>[^,;=]+)", re.IGNORECASE
+)
+_IS_PORT = re.compile(r"(?P<name>[A-Za-z][\w /-]*?)\s*=\s*port\s*[\[<(]?\s*(?P<number>\d+)", re.IGNORECASE)
+_A_FIGURE = re.compile(r"^[-+]?[\d.]+\s*\w{0,4}$")
+_IMPEDANCES = re.compile(r"^\s*port impedances?\s*:?(?P<rest>.*)$", re.IGNORECASE)
+_ONE_IMPEDANCE = re.compile(
+    r"\b(?:z_?[0o]|(?:port|reference|ref\.?|characteristic|system)[ _]impedance)\b[^\d!]{0,20}?(?P<ohm>\d+(?:\.\d+)?)"
+    r"(?:\s*ohms?|\s*Ω)?",
+    re.IGNORECASE,
+)
+_NUMBER = re.compile(r"[-+]?\d+(?:\.\d*)?(?:[eE][-+]?\d+)?")
+
+
+@dataclass(frozen=True, slots=True)
+class Shape:
+    """What is known of the data when the comments are read; ``order`` are the entries in the order of the format."""
+
+    parameter: str
+    pair_format: PairFormat
+    order: tuple[tuple[int, int], ...]
+    axis: Floats
+    lines: NDArray[np.int64]
+    reference: tuple[float, ...]
+    reference_stated: bool
+
+    @property
+    def ports(self) -> int:
+        """How many ports there are."""
+        return len(self.reference)
+
+
+@dataclass(frozen=True, slots=True)
+class Told:
+    """What comments tell: doubts, remarks, names of the ports ("" where none), impedances (n, p) or None."""
+
+    doubts: tuple[Doubt, ...]
+    remarks: tuple[Remark, ...]
+    port_names: tuple[str, ...]
+    impedances: Complexes | None
+
+
+def read_comments(comments: Sequence[Comment], shape: Shape) -> Told:
+    """Read the comments of a file."""
+    doubts = [*_column_doubts(comments, shape), *_axis_doubts(comments, shape)]
+    remarks: list[Remark] = []
+    impedances = _impedances(comments, shape, remarks)
+    names = _port_names(comments, shape.ports)
+    return Told(tuple(doubts), tuple(remarks), names, impedances)
+
+
+def mentions(text: str, parameter: str) -> list[tuple[int, int]]:
+    """Return the entries that a text names, in its order: S21, S(2,1), S2_1, dB(S21), magS21 are all (2, 1)."""
+    found = []
+    for match in _ENTRY.finditer(text):
+        if match["letter"].upper() == parameter:
+            numbers = [int(group) for group in match.groups()[1:] if group is not None]
+            found.append((numbers[0], numbers[1]))
+    return found
+
+
+def _runs(comments: Sequence[Comment]) -> Iterator[list[Comment]]:
+    """Comments on lines that follow each other, none of them beside data."""
+    run: list[Comment] = []
+    for comment in comments:
+        if comment.beside_data:
+            continue
+        if run and comment.line != run[-1].line + 1:
+            yield run
+            run = []
+        run.append(comment)
+    if run:
+        yield run
+
+
+def _column_doubts(comments: Sequence[Comment], shape: Shape) -> Iterator[Doubt]:
+    """Doubts about headers in comments: another order of the entries than the format's, or other numbers in a pair."""
+    wanted = [(i + 1, j + 1) for i, j in shape.order]
+    for run in _runs(comments):
+        named = [(one, found) for one in run if (found := mentions(one.text, shape.parameter))]
+        listed = list(dict.fromkeys(entry for _, found in named for entry in found))
+        if not named or (set(listed) != set(wanted) and not _FREQUENCY.search(named[0][0].text)):
+            continue
+        line, text = named[0][0].line, named[0][0].text
+        if set(listed) <= set(wanted) and listed != [one for one in wanted if one in listed]:
+            has, says = _names(wanted, shape.parameter), _names(listed, shape.parameter)
+            what = f"the comment names the columns {says}; by the format they are {has}"
+            yield Doubt(DoubtKind.COLUMN_ORDER, line, what)
+        elif shape.ports == 1 and listed[0] != (1, 1):
+            what = f"the comment names the column {_names(listed, shape.parameter)}; by the format it is S11"
+            yield Doubt(DoubtKind.COLUMN_ORDER, line, what)
+        meant = _format_named(text)
+        if meant is not None and meant is not shape.pair_format:
+            first, second = meant.parts
+            what = (
+                f"the comment names columns of {first} and {second}, "
+                f"the option line says {shape.pair_format.value}"
+            )
+            yield Doubt(DoubtKind.PAIR_FORMAT, line, what)
+
+
+def _names(entries: Sequence[tuple[int, int]], parameter: str) -> str:
+    joint = "" if all(i < 10 and j < 10 for i, j in entries) else "_"
+    shown = " ".join(f"{parameter}{i}{joint}{j}" for i, j in entries[:12])
+    return shown + (" ..." if len(entries) > 12 else "")
+
+
+def _format_named(text: str) -> PairFormat | None:
+    """The format that the words of a header mean, None where they mean none or several."""
+    words = set(re.findall(r"[a-z]+", _ENTRY.sub(" ", text).casefold()))
+    if {"re", "im"} <= words or {"real", "imag"} <= words or {"real", "imaginary"} <= words:
+        return PairFormat.RI
+    if words & {"db", "logmag", "dbmag"}:
+        return PairFormat.DB
+    if words & {"mag", "magn", "magnitude", "lin", "linmag", "abs"} and words & {
+        "ang", "angle", "arg", "deg", "phase", "degree", "degrees", "phi",
+    }:  # fmt: skip
+        return PairFormat.MA
+    return None
+
+
+def _axis_doubts(comments: Sequence[Comment], shape: Shape) -> Iterator[Doubt]:
+    """Doubts about the x axis: a header or a sentence that speaks of another sweep, or frequencies below zero."""
+    below = np.flatnonzero(shape.axis < 0)
+    if len(below):
+        value = shape.axis[below[0]]
+        what = f"the first number of the row is {value:.12g}, which is no frequency"
+        yield Doubt(DoubtKind.X_AXIS, int(shape.lines[below[0]]), what)
+    first_data = int(shape.lines[0])
+    above = [one for one in comments if one.line < first_data and one.text]
+    for comment in comments:
+        match = _ENTRY.search(comment.text)
+        head = comment.text[: match.start()] if match else ""
+        is_last = bool(above) and comment is above[-1]
+        if not match and is_last and not re.search(r"[:=]", comment.text):
+            head = " ".join(comment.text.split()[:2])
+        swept = _SWEPT.search(comment.text)
+        header = head and _OTHER_AXIS.search(head) and not _FREQUENCY.search(head)
+        if (header and (match is None or len(mentions(comment.text, shape.parameter)) > 1)) or swept:
+            what = f"the comment {comment.text[:60]!r} speaks of an x axis that is no frequency"
+            yield Doubt(DoubtKind.X_AXIS, comment.line, what)
+
+
+def _port_names(comments: Sequence[Comment], ports: int) -> tuple[str, ...]:
+    names = [""] * ports
+    for comment in comments:
+        for match in (*_IS_PORT.finditer(comment.text), *_PORT_IS.finditer(comment.text)):
+            number = int(match["number"])
+            name = " ".join(match["name"].split())
+            if 1 <= number <= ports and name and not _A_FIGURE.match(name) and not names[number - 1]:
+                names[number - 1] = name[:60]
+    return tuple(names) if any(names) else ()
+
+
+def _impedances(comments: Sequence[Comment], shape: Shape, remarks: list[Remark]) -> Complexes | None:
+    """Port impedances (n, p) that comments give for each frequency; a remark where they are not the reference."""
+    blocks = _impedance_blocks(comments)
+    wanted = shape.ports
+    usable = [(line, block) for line, block in blocks if len(block) in (wanted, 2 * wanted)]
+    if not usable:
+        remarks += _single_impedances(comments, shape)
+        return None
+    values = np.array([_complex_list(block, wanted) for _, block in usable], np.complex128)
+    line = usable[0][0]
+    if len(values) not in (1, len(shape.axis)) or len(usable) != len(blocks):
+        what = (
+            f"{len(blocks)} lists of port impedances in comments for {len(shape.axis)} frequencies; not used"
+        )
+        remarks.append(Remark(line, what, warns=True))
+        return None
+    away = np.abs(values - np.asarray(shape.reference)) / np.asarray(shape.reference)
+    if (away > 1e-3).any():
+        shown = ", ".join(f"port {port + 1} {_ohms(one)}" for port, one in enumerate(values[0][:4]))
+        remarks.append(Remark(line, _not_the_reference(f"port impedances ({shown}, ...)", shape), warns=True))
+    return np.broadcast_to(values, (len(shape.axis), wanted))
+
+
+def _complex_list(block: list[float], wanted: int) -> Complexes:
+    """Impedances from ``wanted`` real numbers, or as many pairs of real and imaginary part."""
+    pairs = np.asarray(block, np.float64).reshape(wanted, -1)
+    value: Complexes = pairs[:, 0] + 1j * (pairs[:, 1] if pairs.shape[1] > 1 else 0.0)
+    return value
+
+
+def _not_the_reference(what: str, shape: Shape) -> str:
+    ohms = sorted(set(shape.reference))
+    says = (
+        f"the option line says R {ohms[0]:g}" if shape.reference_stated else "the file names no R (so 50 ohm)"
+    )
+    return (
+        f"comments give {what}, {says}: the entries may be referred to the impedances of the comments; "
+        "they were read as written"
+    )
+
+
+def _ohms(value: complex) -> str:
+    return f"{value.real:.6f} ohm" if value.imag == 0 else f"{value.real:.6f}{value.imag:+.6f}j ohm"
+
+
+def _impedance_blocks(comments: Sequence[Comment]) -> list[tuple[int, list[float]]]:
+    """Lists that begin with "Port Impedance", over comment lines that follow each other and hold only numbers."""
+    blocks: list[tuple[int, list[float]]] = []
+    last = -1
+    for comment in comments:
+        match = _IMPEDANCES.match(comment.text)
+        if match:
+            numbers = _NUMBER.findall(match["rest"])
+            blocks.append((comment.line, [float(one) for one in numbers]))
+            last = comment.line
+        elif blocks and comment.line == last + 1 and not re.search(r"[A-DF-Za-df-z]", comment.text):
+            blocks[-1][1].extend(float(one) for one in _NUMBER.findall(comment.text))
+            last = comment.line
+    return blocks
+
+
+def _single_impedances(comments: Sequence[Comment], shape: Shape) -> Iterator[Remark]:
+    for comment in comments:
+        match = _ONE_IMPEDANCE.search(comment.text)
+        if match and all(abs(float(match["ohm"]) - ohm) > 1e-3 * ohm for ohm in shape.reference):
+            yield Remark(comment.line, _not_the_reference(f"an impedance of {match['ohm']} ohm", shape), True)
