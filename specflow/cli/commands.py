@@ -42,6 +42,7 @@ COMMANDS = (
     CommandEntry("budget", "Show budgets: along the chain, shares, slopes, margins."),
     CommandEntry("allocate", "Allocate a budget over its blocks."),
     CommandEntry("attach", "Attach measurement files."),
+    CommandEntry("derive", "Derive results from raw tables by a law."),
     CommandEntry("known", "Evaluate a budget with the best that is known of each block."),
     CommandEntry("try", "Try changes: what they would do to margins, allocations and status.", "try_"),
     CommandEntry("status", "Show what is proved, failing and missing."),

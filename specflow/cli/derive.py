@@ -1,0 +1,176 @@
+"""``specflow derive``: results made of stored raw tables by named laws."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING, Annotated
+
+import typer
+
+from specflow.cli.console import ask, person, put, put_json, say
+from specflow.cli.options import (
+    ByOption,
+    DryRunOption,
+    JsonOption,
+    ProjectOption,
+    TakeRestOption,
+    YesOption,
+    open_store,
+)
+from specflow.errors import ExitCode, SpecflowError
+
+if TYPE_CHECKING:
+    from specflow.workflows.derive import DeriveOptions
+
+LawArgument = Annotated[
+    str,
+    typer.Argument(help="The law; without one, all laws are listed.", metavar="[LAW]", show_default=False),
+]
+From = Annotated[
+    list[str], typer.Option("--from", metavar="EV-N", help="The table to derive from. Repeatable.")
+]
+Value = Annotated[
+    list[str],
+    typer.Option(
+        "--value",
+        metavar="NAME",
+        help="The value column: its name, header or parameter. ROLE=NAME where a law reads several; "
+        "'NAME where polarisation H' takes some rows only; EV-3:NAME names the table. Repeatable.",
+    ),
+]
+OverOption = Annotated[
+    list[str],
+    typer.Option("--over", metavar="RANGE", help="The range: 'frequency 17.7..20.2 GHz step 0.1 GHz'."),
+]
+Where = Annotated[
+    list[str],
+    typer.Option("--where", metavar="CONDITION", help="Take rows of this condition only. Repeatable."),
+]
+SetOption = Annotated[
+    list[str], typer.Option("--set", metavar="NAME=VALUE", help="A setting of the law. Repeatable.")
+]
+Gives = Annotated[
+    str,
+    typer.Option(
+        "--gives", metavar="PARAMETER", help="The parameter of the result; default: that of the column."
+    ),
+]
+Plane = Annotated[str, typer.Option("--plane", help="The plane of the result; default: that of the column.")]
+Statistic = Annotated[str, typer.Option("--statistic", help="The statistic of the result.")]
+Polarisation = Annotated[str, typer.Option("--polarisation", help="The polarisation of the result.")]
+For = Annotated[
+    str,
+    typer.Option("--for", metavar="REQUIREMENT", help="Take the quantity of the result from a requirement."),
+]
+Explain = Annotated[
+    str, typer.Option("--explain", metavar="LAW", help="Explain a law: formula, validity, source.")
+]
+Reason = Annotated[str, typer.Option("--reason", help="Why; it is kept with the derivation.")]
+
+
+def derive(
+    law: LawArgument = "",
+    project: ProjectOption = "",
+    from_: From = [],  # noqa: B006
+    value: Value = [],  # noqa: B006
+    over: OverOption = [],  # noqa: B006
+    where: Where = [],  # noqa: B006
+    set_: SetOption = [],  # noqa: B006
+    gives: Gives = "",
+    plane: Plane = "",
+    statistic: Statistic = "",
+    polarisation: Polarisation = "",
+    for_: For = "",
+    explain: Explain = "",
+    take_rest: TakeRestOption = False,
+    yes: YesOption = False,
+    dry_run: DryRunOption = False,
+    as_json: JsonOption = False,
+    reason: Reason = "",
+    by: ByOption = "",
+) -> int:
+    """Derive results from raw tables by a law. Shows what it gives, then stores it; the raw data stays.
+
+    Worst, mean, percentile, ripple, slope, bandwidth, patterns, total radiated power, compression and more.
+    """
+    from specflow.workflows.derive import DeriveOptions
+
+    if explain:
+        return _explain(explain)
+    if not law:
+        return _list(as_json)
+    options = DeriveOptions(
+        law, from_, value, over, where, _settings(set_), gives, plane, statistic, polarisation, for_
+    )
+    return _derive(project, options, take_rest, yes, dry_run, as_json, reason, person(by))
+
+
+def _settings(said: list[str]) -> dict[str, str]:
+    settings: dict[str, str] = {}
+    for text in said:
+        name, sign, value = text.partition("=")
+        if not sign or not name.strip() or not value.strip():
+            raise SpecflowError(f"--set {text!r} is not NAME=VALUE", hint="--set percentile=50")
+        settings[name.strip()] = value.strip()
+    return settings
+
+
+def _explain(name: str) -> int:
+    from specflow.workflows.derive import law_named
+    from specflow.workflows.derive_tables import law_lines
+
+    for line in law_lines(law_named(name)):
+        put(line)
+    return int(ExitCode.CLEAN)
+
+
+def _list(as_json: bool) -> int:
+    from specflow.cli.tables import put_table, table_as_json
+    from specflow.workflows.derive_tables import laws_table
+
+    if as_json:
+        put_json(table_as_json(laws_table()))
+    else:
+        put_table(laws_table())
+        say("specflow derive --explain LAW says all of one")
+    return int(ExitCode.CLEAN)
+
+
+def _derive(
+    project: str,
+    options: DeriveOptions,
+    take_rest: bool,
+    yes: bool,
+    dry_run: bool,
+    as_json: bool,
+    reason: str,
+    by: str,
+) -> int:
+    from specflow.cli.tables import put_table
+    from specflow.workflows.derive import accept_derive, check_acceptable, preview_derive
+    from specflow.workflows.derive_tables import preview_as_json, preview_table
+
+    with open_store(project, read_only=dry_run) as store:
+        preview = preview_derive(store, options)
+        data = preview_as_json(preview)
+        if not as_json:
+            put_table(preview_table(preview))
+        stored = None
+        try:
+            check_acceptable(preview, take_rest=take_rest)
+            if preview.is_unchanged:
+                say(f"unchanged: this is stored as {preview.stored_as}")
+            elif dry_run:
+                say("nothing was stored")
+            elif yes or ask("store this?"):
+                stored = accept_derive(store, preview, by=by, reason=reason, take_rest=take_rest)
+                say(
+                    f"stored as {stored.table} by derivation {stored.derivation}; "
+                    f"the project is at revision {stored.revision}"
+                )
+            else:
+                say("nothing was stored")
+        finally:
+            if as_json:
+                told = {} if stored is None else {"stored": stored.table, "derivation": stored.derivation}
+                put_json(data | told)
+    return int(ExitCode.CLEAN)
