@@ -8,25 +8,22 @@ from dataclasses import dataclass, field
 import numpy as np
 from numpy.typing import NDArray
 
-from specflow.conditions.words import value_words
+from specflow.conditions.words import difference_words, range_words, value_words
 from specflow.derive.coverage import covered_rows
 from specflow.derive.grouping import grouped_rows
 from specflow.derive.joining import Joined, joined
 from specflow.derive.law import Law, Outcome
 from specflow.derive.said import SaidRange, read_over, typed_settings
-from specflow.derive.samples import Range, Readings, Samples
+from specflow.derive.samples import Range, Samples
 from specflow.errors import CalculationError, DocumentError, UnitError
 from specflow.model.columns import Columns, TextColumn
 from specflow.model.derivation import Covered
-from specflow.model.evidence import SOURCE_COLUMN, EvidenceColumns, EvidenceTable, ValueArrays
+from specflow.model.evidence import AT_COLUMN, SOURCE_COLUMN, EvidenceColumns, EvidenceTable, ValueArrays
 from specflow.model.parameter import Parameter
 from specflow.units import compatible, parse_unit
 
 Floats = NDArray[np.float64]
 Rows = NDArray[np.intp]
-
-#: The extra column of derived tables that says where along the axis a result lies.
-AT_COLUMN = "at"
 
 
 @dataclass(frozen=True, slots=True)
@@ -331,13 +328,8 @@ def _earliest(dates: TextColumn, rows: Joined, found: _Gathered) -> TextColumn:
 
 def covered_words(covers: Sequence[Covered]) -> str:
     """Say what derived values speak for: "17.7 to 20.2 GHz, largest gap 0.1 GHz"."""
-    from specflow.conditions.words import difference_words, range_words
-
     return "; ".join(
         f"{range_words(one.dimension, one.low, one.high, one.unit)}, largest gap "
         f"{difference_words(one.largest_gap, one.unit)}"
         for one in covers
     )
-
-
-__all__ = ["AT_COLUMN", "Derived", "Readings", "Refused", "Request", "Result", "Role", "derive_table"]

@@ -81,3 +81,18 @@ class Derivation(Document):
     def setting(self, name: str) -> str:
         """Return a setting as it was said, "" when it was not."""
         return next((one.text for one in self.settings if one.name == name), "")
+
+    @property
+    def words(self) -> str:
+        """Say it in one line: "worst of Gain over frequency 17.7..20.2 GHz"."""
+        many = len(self.columns) > 1
+        of = ", ".join(
+            (f"{one.role} " if many else "")
+            + one.column
+            + (f" where {' and '.join(one.where)}" if one.where else "")
+            for one in self.columns
+        )
+        over = f" over {' and '.join(self.over)}" if self.over else ""
+        where = f" where {' and '.join(self.where)}" if self.where else ""
+        said = ", ".join(f"{one.name} {one.text}" for one in self.settings if one.text)
+        return f"{self.law} of {of}{over}{where}{f' ({said})' if said else ''}"

@@ -233,6 +233,8 @@ class ItemChange(Document):
 
 #: The extra column of stacked tables: the letter of the column that a value stands in.
 SOURCE_COLUMN = "source column"
+#: The extra column of derived tables: where along its axis a result lies ("18.3 GHz").
+AT_COLUMN = "at"
 
 
 @dataclass(frozen=True, slots=True)

@@ -18,6 +18,7 @@ from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Results, Snapshot
 from specflow.model.verdict import ActivityResult, PointResults, RequirementStatus, Verdict
 from specflow.reports.budget_trail import budget_words, line_words
+from specflow.reports.derivation_trail import derivation_steps, table_derivation_steps
 from specflow.reports.figures import interval, label_tone, margin, share, verdict_tone
 from specflow.reports.lacking import Lacking
 from specflow.reports.origins import OriginFinder
@@ -158,6 +159,8 @@ def _evidence(
                     tone=verdict_tone(_verdict(found, place)),
                     origin=finder.origin(record),
                 )
+                if record is not None:
+                    yield from derivation_steps(record, snapshot, finder, 3)
             if len(listed) < len(places):
                 yield TrailStep(
                     depth=2, kind="point", text=f"... and {len(places) - len(listed)} more points"
@@ -257,6 +260,7 @@ def table_trail(
             text=f"{table.rows} rows for block {table.block}, accepted by {table.accepted_by or 'nobody yet'}",
         ),
         *(_column_step(table, column) for column in table.values),
+        *table_derivation_steps(table, snapshot, 1),
     ]
     for code, count in governed.items():
         requirement = snapshot.find(Requirement, code)

@@ -150,7 +150,7 @@ def check_acceptable(preview: DerivePreview, *, take_rest: bool) -> None:
 def made_documents(
     preview: DerivePreview, *, by: str, at: str, reason: str = "", taken: Mapping[str, int] | None = None
 ) -> list[Document]:
-    """Return the documents to store, with their ids. ``taken``: how many numbers of each prefix are given out already."""
+    """Return the documents to store, with their ids. ``taken``: numbers given out already, by prefix."""
     snapshot, taken = preview.snapshot, taken or {}
     number = {
         prefix: next_number(snapshot, kind, prefix) + taken.get(prefix, 0)
@@ -311,8 +311,8 @@ def _table(
 ) -> EvidenceTable:
     base = request.roles[0].table
     column = next(one for one in base.values if one.name == request.roles[0].column)
-    how = law_words(derivation)
-    value = replace_column(column, derived, quantity, how)
+    how = derivation.words
+    value = _value_column(column, derived, quantity, how)
     kept = set(derived.columns.conditions.names)
     requirement = snapshot.find(Requirement, base.requirement)
     keeps = requirement is not None and code_key(requirement.quantity.parameter) == code_key(
@@ -343,9 +343,7 @@ def _table(
     return table.model_copy(update={"digest": digest(content)})
 
 
-def replace_column(
-    column: ValueColumn, derived: Derived, quantity: QuantityIdentity, how: str
-) -> ValueColumn:
+def _value_column(column: ValueColumn, derived: Derived, quantity: QuantityIdentity, how: str) -> ValueColumn:
     """Return the value column of the result: at the place of the column that was read, with what was done to it."""
     return column.model_copy(
         update={
@@ -358,20 +356,6 @@ def replace_column(
             "conversions": (*column.conversions, how),
         }
     )
-
-
-def law_words(derivation: Derivation) -> str:
-    """Say a derivation in one line: "worst of gain over frequency: 17.7..20.2 GHz"."""
-    of = ", ".join(
-        (f"{one.role} " if len(derivation.columns) > 1 else "")
-        + one.column
-        + (f" where {' and '.join(one.where)}" if one.where else "")
-        for one in derivation.columns
-    )
-    over = f" over {' and '.join(derivation.over)}" if derivation.over else ""
-    where = f" where {' and '.join(derivation.where)}" if derivation.where else ""
-    said = ", ".join(f"{one.name} {one.text}" for one in derivation.settings if one.text)
-    return f"{derivation.law} of {of}{over}{where}{f' ({said})' if said else ''}"
 
 
 def repeated(preview: DerivePreview, earlier: Derivation, replaces: str, names_fail: str) -> DerivePreview:

@@ -10,7 +10,7 @@ from specflow.derive.law import Setting
 from specflow.derive.table import covered_words
 from specflow.model.report import CellTone, ReportCell, ReportColumn, ReportRow, ReportTable
 from specflow.units import format_value
-from specflow.workflows.derive import DerivePreview, law_words
+from specflow.workflows.derive import DerivePreview
 
 
 def preview_table(preview: DerivePreview) -> ReportTable:
@@ -37,7 +37,7 @@ def preview_table(preview: DerivePreview) -> ReportTable:
         )
         for one in preview.derived.refused
     ]
-    title = f"{column.quantity.parameter}: {law_words(preview.derivation)}"
+    title = f"{column.quantity.parameter}: {preview.derivation.words}"
     return _table(
         "derived", title, _intro(preview), ("Item and conditions", "Value", "u", "At", "Readings"), rows
     )

@@ -47,7 +47,8 @@ def replaced_rows(
     gone = {code_key(one.earlier) for one in snapshot.all(Supersession) if one.rows is None}
     gone |= {code_key(one.table) for one in snapshot.all(Withdrawal) if one.rows is None}
     files = {code_key(file.id) for file in snapshot.all(EvidenceFile) if file.sha256 == sha256}
-    standing = [one for one in snapshot.tables if code_key(one.id) not in gone]
+    # A derived table stands in the same file as its input; only deriving again replaces it.
+    standing = [one for one in snapshot.tables if code_key(one.id) not in gone and one.derivation is None]
     again = [one for one in standing if one.table_key and one.table_key == table.table_key]
     cells = [
         one
