@@ -11,10 +11,11 @@ class Policy(Document):
     """Rules of the house: thresholds and severities that are project data, not code.
 
     ``marginal_db`` flags a pass or fail without uncertainty that is nearer to the limit than this.
-    ``severities`` override the built-in severity of a finding rule ("off" silences it).
+    ``keep_copies``: a copy of each attached file is kept in the project. ``severities`` override the built-in severity of a finding rule ("off" silences it).
     """
 
     second_review: bool = False
+    keep_copies: bool = False
     marginal_db: float = Field(default=0.5, ge=0)
     marginal_relative: float = Field(default=0.05, ge=0)
     severities: dict[str, str] = Field(default_factory=dict)

@@ -32,7 +32,8 @@ def make_batch(
     """Return changes with the arrays of added tables and the bytes of added files, all checked against each other.
 
     Raises DocumentError when an added table comes without its arrays, arrays come for a table that is not added
-    (stored arrays never change), bytes are not those of their file, or a baseline comes without its bytes.
+    (stored arrays never change), bytes are not those of a file that becomes one with a kept copy, or a baseline comes
+    without its bytes.
     """
     edits = read_edits(changes)
     added = {edit.key: edit for edit in edits if edit.change.action == "add"}
@@ -43,7 +44,7 @@ def make_batch(
             )
         if edit.noun.name == "baseline" and edit.change.action == "add":
             raise DocumentError("a baseline is stored together with its bytes", where=edit.title)
-    return Batch(edits, _pack_all(added.values(), columns), _check_files(added, files))
+    return Batch(edits, _pack_all(added.values(), columns), _check_files(edits, files))
 
 
 def make_baseline_batch(baseline: Baseline, content: bytes) -> Batch:
@@ -72,12 +73,19 @@ def _pack_all(added: Iterable[Edit], columns: Mapping[str, EvidenceColumns]) -> 
     return packed
 
 
-def _check_files(added: Mapping[tuple[str, str], Edit], files: Mapping[str, bytes]) -> dict[str, bytes]:
+def _check_files(edits: Sequence[Edit], files: Mapping[str, bytes]) -> dict[str, bytes]:
+    known = {
+        edit.key[1]: edit
+        for edit in edits
+        if isinstance(edit.document, EvidenceFile) and edit.document.kept and edit.change.action != "remove"
+    }
     kept: dict[str, bytes] = {}
     for code, data in files.items():
-        edit = added.get(("evidence_file", code_key(code)))
+        edit = known.get(code_key(code))
         if edit is None or not isinstance(edit.document, EvidenceFile):
-            raise DocumentError("bytes come for a file that is not added", where=f"evidence file {code}")
+            raise DocumentError(
+                "bytes come for a file that does not become one with a copy", where=f"evidence file {code}"
+            )
         if hashlib.sha256(data).hexdigest() != edit.document.sha256:
             raise DocumentError("the bytes do not have the digest that the document states", where=edit.title)
         kept[code_key(code)] = data

@@ -33,6 +33,11 @@ class ProjectDatabase:
         return self._engine.url.render_as_string(hide_password=True)
 
     @property
+    def folder(self) -> None:
+        """A database lies in no folder."""
+        return None
+
+    @property
     def copies(self) -> Path:
         """The name of the database: copies go to the current folder."""
         return Path(self._engine.url.database or "project")

@@ -66,6 +66,11 @@ class ProjectFile:
         return str(self.path)
 
     @property
+    def folder(self) -> Path:
+        """The folder of the file."""
+        return self.path.parent
+
+    @property
     def copies(self) -> Path:
         """The path without its suffix: copies go beside the file."""
         return self.path.with_suffix("")

@@ -31,6 +31,10 @@ class Place(Protocol):
         """How messages call it."""
 
     @property
+    def folder(self) -> Path | None:
+        """The folder that the project lies in; None for a database on a server."""
+
+    @property
     def copies(self) -> Path:
         """What names of copies made by themselves begin with."""
 

@@ -155,6 +155,11 @@ class ProjectStore:
         return self._place.name
 
     @property
+    def folder(self) -> Path | None:
+        """The folder that the project file lies in; None for a database on a server."""
+        return self._place.folder
+
+    @property
     def revision(self) -> int:
         """The project revision as stored now; it grows when anybody accepts changes, so it may be polled."""
         with translated(self.name), self._place.reading() as run:
@@ -180,8 +185,8 @@ class ProjectStore:
     ) -> int:
         """Store changes, all or none; return the project revision (unchanged when there are no changes).
 
-        ``columns``: the arrays of every evidence table that is added, by id. ``files``: bytes of added evidence
-        files that are to be kept. ``expected_revision``: refuse when the project went on since.
+        ``columns``: the arrays of every evidence table that is added, by id. ``files``: bytes of evidence
+        files of which a copy is to be kept from now on. ``expected_revision``: refuse when the project went on since.
 
         Raises ConflictError when somebody else changed the same documents (or the project went on), DocumentError
         when the changes contradict each other or the project, StoreError when the database cannot be written. The

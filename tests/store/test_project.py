@@ -20,7 +20,7 @@ from specflow.model.baseline import Baseline
 from specflow.model.block import Block
 from specflow.model.budget import Budget, BudgetLine
 from specflow.model.decision import Waiver
-from specflow.model.evidence import EvidenceTable, ItemChange
+from specflow.model.evidence import EvidenceFile, EvidenceTable, ItemChange
 from specflow.model.requirement import Requirement
 from specflow.store import ProjectStore, create_project, open_project
 from tests.builders import (
@@ -340,14 +340,25 @@ def test_a_baseline_keeps_its_bytes(store: ProjectStore) -> None:
 
 def test_a_copy_of_a_file_is_kept_when_asked_for(store: ProjectStore) -> None:
     data = b"freq,gain\n1,2\n"
-    kept = an_evidence_file("F-1", sha256=hashlib.sha256(data).hexdigest(), size=len(data))
+    kept = an_evidence_file("F-1", sha256=hashlib.sha256(data).hexdigest(), size=len(data), kept=True)
     store.apply(adding(kept, an_evidence_file("F-2")), files={"f-1": data}, by=ME)
     assert store.file_bytes("F-1") == data
     assert store.file_bytes("F-2") is None
     with pytest.raises(DocumentError, match="digest"):
-        store.apply(adding(an_evidence_file("F-3")), files={"F-3": data}, by=ME)
-    with pytest.raises(DocumentError, match="not added"):
+        store.apply(adding(an_evidence_file("F-3", kept=True)), files={"F-3": data}, by=ME)
+    with pytest.raises(DocumentError, match="does not become one with a copy"):
         store.apply(adding(an_evidence_file("F-3")), files={"F-4": data}, by=ME)
+
+
+def test_a_copy_may_come_later_than_its_file(store: ProjectStore) -> None:
+    data = b"freq,gain\n1,2\n"
+    file = an_evidence_file("F-1", sha256=hashlib.sha256(data).hexdigest(), size=len(data))
+    store.apply(adding(file), by=ME)
+    with pytest.raises(DocumentError, match="does not become one with a copy"):
+        store.apply([editing(file, note="seen")], files={"F-1": data}, by=ME)
+    store.apply([editing(file, kept=True)], files={"F-1": data}, by=ME)
+    assert store.file_bytes("F-1") == data
+    assert store.load().all(EvidenceFile)[0].kept
 
 
 def test_a_backup_is_a_project_of_its_own(store: ProjectStore, tmp_path: Path) -> None:

@@ -29,8 +29,8 @@ LAYOUT = SheetLayout(
             title="Name",
             aliases=("Setting", "Property"),
             required=True,
-            guidance="Name, Description, Invented, Second review, Marginal threshold in dB, Marginal threshold "
-            "relative, or Severity of and the code of a rule ('specflow rules' lists them).",
+            guidance="Name, Description, Invented, Second review, Keep copies, Marginal threshold in dB, Marginal "
+            "threshold relative, or Severity of and the code of a rule ('specflow rules' lists them).",
             example="Name",
             width=30,
         ),
@@ -47,6 +47,7 @@ LAYOUT = SheetLayout(
     more_examples=(
         {"mark": "example", "name": "Description", "value": "Ka-band terminal of a ferry"},
         {"mark": "example", "name": "Second review", "value": "no"},
+        {"mark": "example", "name": "Keep copies", "value": "no"},
         {"mark": "example", "name": "Marginal threshold in dB", "value": "0.5 dB"},
         {"mark": "example", "name": "Marginal threshold relative", "value": "5 %"},
         {"mark": "example", "name": "Severity of no-credit", "value": "info"},
@@ -84,6 +85,12 @@ def _second_review(row: SheetRow, project: Project) -> Set | None:
     return None if said is None else _with_policy(row, project, words, second_review=said)
 
 
+def _keep_copies(row: SheetRow, project: Project) -> Set | None:
+    said = _yes(row)
+    words = "a copy of each attached file is kept" if said else "no copies of attached files are kept"
+    return None if said is None else _with_policy(row, project, words, keep_copies=said)
+
+
 def _marginal_db(row: SheetRow, project: Project) -> Set | None:
     value = _number(row, "dB")
     words = f"marginal within {format_value(value or 0.0)} dB of the limit"
@@ -102,6 +109,7 @@ SETTINGS: dict[str, Callable[[SheetRow, Project], Set | None]] = {
     "Description": _description,
     "Invented": _invented,
     "Second review": _second_review,
+    "Keep copies": _keep_copies,
     "Marginal threshold in dB": _marginal_db,
     "Marginal threshold relative": _marginal_relative,
 }
