@@ -57,6 +57,10 @@ class Archive:
             hint="copy the file again, or open and save it in a spreadsheet program",
         )
 
+    def size(self, part: str) -> int:
+        """How many bytes a part unpacks to, as the directory declares."""
+        return self._info(part).file_size
+
     def stream(self, part: str) -> Iterator[bytes]:
         """The content of a part in pieces of at most two MiB; never more than its directory entry declares."""
         total, checksum = 0, 0

@@ -15,10 +15,12 @@ _WORKBOOK, _STYLES = "xl/workbook.xml", "xl/styles.xml"
 
 @dataclass(frozen=True, slots=True)
 class Book:
-    """``sheets`` maps each worksheet to its part in the archive, in the order of the workbook."""
+    """``sheets`` maps each worksheet to its part in the archive, in the order of the workbook; ``hidden`` are the names
+    of those that are not shown."""
 
     sheets: dict[str, str]
     styles: Styles
+    hidden: frozenset[str] = frozenset()
 
 
 def read_book(archive: Archive) -> Book:
@@ -26,17 +28,25 @@ def read_book(archive: Archive) -> Book:
     if _WORKBOOK not in archive:
         raise _no_workbook(archive)
     root, targets = archive.xml(_WORKBOOK), relations(archive, _WORKBOOK)
-    calculation = next((element for element in root if local_name(element) == "calcPr"), None)
-    never = calculation is not None and calculation.get("fullCalcOnLoad") in ("1", "true")
-    styles = read_styles(archive.xml(_STYLES) if _STYLES in archive else None, never)
+    never = _says(root, "calcPr", "fullCalcOnLoad")
+    from_1904 = _says(root, "workbookPr", "date1904")
+    styles = read_styles(archive.xml(_STYLES) if _STYLES in archive else None, never, from_1904)
     sheets = {}
+    hidden = set()
     for element in children(root, "sheets"):
         kind, part = targets.get(_relation_id(element), ("", ""))
         if kind == "worksheet":
             sheets[element.get("name", "")] = part
+            if element.get("state", "visible") != "visible":
+                hidden.add(element.get("name", ""))
     if not sheets:
         raise FileError("the workbook has no worksheet", where=archive.name, hint="charts alone are not read")
-    return Book(sheets, styles)
+    return Book(sheets, styles, frozenset(hidden))
+
+
+def _says(root: Element, name: str, attribute: str) -> bool:
+    element = next((element for element in root if local_name(element) == name), None)
+    return element is not None and element.get(attribute) in ("1", "true")
 
 
 def relations(archive: Archive, part: str) -> dict[str, tuple[str, str]]:

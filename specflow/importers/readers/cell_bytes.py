@@ -10,6 +10,7 @@ and the sheet is read as events instead.
 from __future__ import annotations
 
 import re
+from collections.abc import Callable
 from functools import cached_property
 
 import numpy as np
@@ -43,16 +44,21 @@ class Irregular(Exception):
     """The rows are not written in the usual shape."""
 
 
-def scan_rows(block: bytes, marks: OddMarks, styles: Styles) -> None:
-    """Mark the odd cells of a block of whole rows; raises Irregular or SheetProblem."""
+def scan_rows(
+    block: bytes, marks: OddMarks, styles: Styles, take: Callable[[Cells], None] | None = None
+) -> None:
+    """Mark the odd cells of a block of whole rows, and hand the cells on to ``take``; raises Irregular or
+    SheetProblem."""
     # the single byte is looked for first because that is ten times as fast
     if (b"!" in block and b"<!" in block) or (b"?" in block and b"<?" in block):
         raise Irregular
     if b' hidden="' in block:
         _scan_hidden(block, marks)
-    cells = _Cells(block)
+    cells = Cells(block)
     if len(cells.at):
         cells.mark(marks, styles)
+        if take is not None:
+            take(cells)
 
 
 def _scan_hidden(block: bytes, marks: OddMarks) -> None:
@@ -63,8 +69,12 @@ def _scan_hidden(block: bytes, marks: OddMarks) -> None:
             marks.hidden_rows.add(int(number[1]))
 
 
-class _Cells:
-    """All cells of one block, side by side in arrays; ``_next`` is where the part not yet read begins."""
+class Cells:
+    """All cells of one block, side by side in arrays; ``_next`` is where the part not yet read begins.
+
+    ``letter`` is the first letter of the type (``S`` for the text of a formula); ``value_at`` is where the tag of the
+    value begins, in cells that are ``valued``.
+    """
 
     def __init__(self, block: bytes) -> None:
         self._block = block
@@ -86,7 +96,7 @@ class _Cells:
         self._mark(marks, no_value, OddCell(OddKind.NO_VALUE))
         number = self.number & self.valued
         if styles.never_calculated:
-            unset = number & self.formula & self._stands(self._value_at + len(b"<v"), b">0<")
+            unset = number & self.formula & self.stands(self.value_at + len(b"<v"), b">0<")
             self._mark(marks, unset, NEVER_CALCULATED)
             number &= ~unset
         self._mark(marks, self.date & self.valued, OddCell(OddKind.DATE, "ISO 8601"))
@@ -104,7 +114,7 @@ class _Cells:
 
     def _mark_errors(self, marks: OddMarks) -> None:
         for place in np.flatnonzero(self.error).tolist():
-            value = _VALUE.match(self._block, int(self._value_at[place]))
+            value = _VALUE.match(self._block, int(self.value_at[place]))
             text = value[1].decode("utf-8", "replace") if value else ""
             marks.add_one(int(self.row[place]), int(self.column[place]), OddCell(OddKind.ERROR, text))
 
@@ -117,7 +127,7 @@ class _Cells:
         cells: Places = at[third == ord(" ")]
         return cells
 
-    def _stands(self, at: Places, text: bytes) -> Flags:
+    def stands(self, at: Places, text: bytes) -> Flags:
         """At which of these places does ``text`` stand?"""
         found: Flags = self._bytes[at] == text[0]
         for offset, byte in enumerate(text[1:], start=1):
@@ -138,7 +148,7 @@ class _Cells:
 
     def _read_reference(self) -> None:
         """Row and column of each cell."""
-        if not self._stands(self.at, b'<c r="').all():
+        if not self.stands(self.at, b'<c r="').all():
             raise Irregular
         at = self.at + len(b'<c r="')
         self.column = np.zeros(len(at), dtype=np.intp)
@@ -160,7 +170,7 @@ class _Cells:
     def _read_style(self) -> None:
         """The style of each cell; a cell without one has style 0."""
         self.style = np.zeros(len(self.at), dtype=np.intp)
-        styled = np.flatnonzero(self._stands(self._next, b' s="'))
+        styled = np.flatnonzero(self.stands(self._next, b' s="'))
         number, after = self._digits(self._next[styled] + len(b' s="'), 5)
         if not (self._bytes[after] == ord('"')).all():
             raise Irregular
@@ -170,9 +180,10 @@ class _Cells:
     def _read_type(self) -> None:
         """What each cell says it holds; a cell without a type holds a number."""
         self._skip_metadata()
-        typed = self._stands(self._next, b' t="')
+        typed = self.stands(self._next, b' t="')
         letter = np.where(typed, self._bytes[self._next + 4], ord("n"))
-        string = typed & self._stands(self._next + 4, b'str"')
+        string = typed & self.stands(self._next + 4, b'str"')
+        self.letter = np.where(string, ord("S"), letter)
         self.number = letter == ord("n")
         self.error, self.date = letter == ord("e"), letter == ord("d")
         self.shared = (letter == ord("s")) & ~string
@@ -188,7 +199,7 @@ class _Cells:
     def _skip_metadata(self) -> None:
         """Cells of dynamic arrays and of rich values carry more attributes, before or after the type; they are few,
         and taken one by one."""
-        more = (self._bytes[self._next] == ord(" ")) & ~self._stands(self._next, b' t="')
+        more = (self._bytes[self._next] == ord(" ")) & ~self.stands(self._next, b' t="')
         for place in np.flatnonzero(more).tolist():
             metadata = _METADATA.match(self._block, int(self._next[place]))
             if metadata is None:
@@ -202,15 +213,15 @@ class _Cells:
         has_tag = tag == ord("v")
         if not (self.formula | inline | has_tag | (tag == ord("/"))).all():
             raise Irregular
-        self._value_at = self._next.copy()
+        self.value_at = self._next.copy()
         if self.formula.any():
-            self._value_at[self.formula] = self._behind_formula(self._next[self.formula])
-            has_tag |= self.formula & self._stands(self._value_at, b"<v")
-        after = self._bytes[self._value_at + len(b"<v")]
-        first = self._bytes[self._value_at + len(b"<v>")]
+            self.value_at[self.formula] = self._behind_formula(self._next[self.formula])
+            has_tag |= self.formula & self.stands(self.value_at, b"<v")
+        after = self._bytes[self.value_at + len(b"<v")]
+        first = self._bytes[self.value_at + len(b"<v>")]
         blank = (after == ord("/")) | ((after == ord(">")) & (first == ord("<")))
         # Some writers leave a blank before the slash.
-        blank |= self._stands(self._value_at + len(b"<v"), b" />")
+        blank |= self.stands(self.value_at + len(b"<v"), b" />")
         self.valued = (has_tag & ~blank) | inline
         self.cached = has_tag & (self.text | ~blank)
         shared = self.shared & self.valued & ~inline
@@ -220,7 +231,7 @@ class _Cells:
 
     def _check_shared_texts(self, which: Flags) -> None:
         """The bulk reader takes whatever is no number for shared text 0."""
-        _, end = self._digits(self._value_at[which] + len(b"<v>"), 10)
+        _, end = self._digits(self.value_at[which] + len(b"<v>"), 10)
         if not (self._bytes[end] == ord("<")).all():
             raise SheetProblem("a cell names no shared text")
 
@@ -229,6 +240,22 @@ class _Cells:
         place = np.searchsorted(self._tags, at)
         second = self._tags[place + 1]
         return np.where(self._bytes[second + 1] == ord("/"), self._tags[place + 2], second)
+
+    def next_tag(self, at: Places) -> Places:
+        """Where the first tag at or behind each of these places begins."""
+        return self._tags[np.searchsorted(self._tags, at)]
+
+    def whole_numbers(self, at: Places) -> Places:
+        """The whole numbers that stand at these places."""
+        return self._digits(at, 10)[0]
+
+    def cut(self, starts: Places) -> bytes:
+        """What stands at these ascending places up to and with the ``<`` behind each, one after the other."""
+        edges = np.zeros(len(self._bytes) + 1, np.int8)
+        edges[starts] = 1
+        edges[self.next_tag(starts) + 1] -= 1
+        inside: Flags = np.cumsum(edges[:-1], dtype=np.int8).view(np.bool_)
+        return self._bytes[inside].tobytes()
 
     @cached_property
     def _tags(self) -> Places:

@@ -8,6 +8,8 @@ from numpy.typing import NDArray
 from specflow.importers.readers.grid import CellRange, OddCell, OddCells, OddRun
 
 Integers = NDArray[np.int64]
+Runs = tuple[Integers, Integers, Integers, Integers]
+"""Column, first row, last row and code of runs; four arrays of one length."""
 
 
 class OddMarks:
@@ -15,7 +17,7 @@ class OddMarks:
 
     def __init__(self) -> None:
         self._legend: dict[OddCell, int] = {}
-        self._marks: list[tuple[Integers, Integers, Integers]] = []
+        self._runs: list[Runs] = []
         self._single: list[tuple[int, int, int]] = []
         self._extent: tuple[int, int, int, int] | None = None
         self.hidden_rows: set[int] = set()
@@ -25,9 +27,10 @@ class OddMarks:
         return self._legend.setdefault(cell, len(self._legend))
 
     def add(self, rows: Integers, columns: Integers, codes: Integers) -> None:
-        """Mark many cells; three arrays of one length."""
+        """Mark many cells; three arrays of one length. They are kept as runs at once: a percent-formatted column of
+        a million rows must not take a million marks."""
         if len(rows):
-            self._marks.append((rows, columns, codes))
+            self._runs.append(_as_runs(rows, columns, codes))
 
     def add_one(self, row: int, column: int, cell: OddCell) -> None:
         """Mark one cell."""
@@ -52,20 +55,37 @@ class OddMarks:
         if self._single:
             self.add(*np.array(self._single, dtype=np.int64).T)
             self._single = []
-        if not self._marks:
+        if not self._runs:
             return OddCells()
-        rows, columns, codes = (np.concatenate(parts) for parts in zip(*self._marks, strict=True))
-        order = np.lexsort((rows, columns))
-        rows, columns, codes = rows[order], columns[order], codes[order]
-        same = (columns[1:] == columns[:-1]) & (codes[1:] == codes[:-1]) & (rows[1:] - rows[:-1] <= 1)
-        starts = np.flatnonzero(np.concatenate(([True], ~same)))
-        stops = np.concatenate((starts[1:], [len(rows)])) - 1
+        runs = _joined(*(np.concatenate(parts) for parts in zip(*self._runs, strict=True)))
         legend = list(self._legend)
-        runs = zip(
-            columns[starts].tolist(),
-            rows[starts].tolist(),
-            rows[stops].tolist(),
-            codes[starts].tolist(),
-            strict=True,
+        return OddCells(
+            OddRun(column, first, last, legend[code])
+            for column, first, last, code in zip(*(part.tolist() for part in runs), strict=True)
         )
-        return OddCells(OddRun(column, first, last, legend[code]) for column, first, last, code in runs)
+
+
+def _as_runs(rows: Integers, columns: Integers, codes: Integers) -> Runs:
+    """Single marks as runs."""
+    order = np.lexsort((rows, columns))
+    rows, columns, codes = rows[order], columns[order], codes[order]
+    same = (columns[1:] == columns[:-1]) & (codes[1:] == codes[:-1]) & (rows[1:] - rows[:-1] <= 1)
+    starts = np.flatnonzero(np.concatenate(([True], ~same)))
+    stops = np.concatenate((starts[1:], [len(rows)])) - 1
+    return columns[starts], rows[starts], rows[stops], codes[starts]
+
+
+def _joined(columns: Integers, first: Integers, last: Integers, codes: Integers) -> Runs:
+    """Runs of several blocks, joined where they touch. Where a file marks a cell twice, the last mark stands."""
+    order = np.lexsort((first, columns))
+    columns_, first_, last_, codes_ = columns[order], first[order], last[order], codes[order]
+    beside = columns_[1:] == columns_[:-1]
+    if (beside & (first_[1:] <= last_[:-1])).any():
+        sizes = last - first + 1
+        begin = np.repeat(np.cumsum(sizes) - sizes, sizes)
+        rows = np.repeat(first, sizes) + np.arange(int(sizes.sum())) - begin
+        return _as_runs(rows, np.repeat(columns, sizes), np.repeat(codes, sizes))
+    touch = beside & (codes_[1:] == codes_[:-1]) & (first_[1:] == last_[:-1] + 1)
+    starts = np.flatnonzero(np.concatenate(([True], ~touch)))
+    stops = np.concatenate((starts[1:], [len(first_)])) - 1
+    return columns_[starts], first_[starts], last_[stops], codes_[starts]

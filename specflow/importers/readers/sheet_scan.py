@@ -10,12 +10,13 @@ program writes and are taken as byte arrays (``cell_bytes``); what is around the
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from xml.parsers import expat
 
 from specflow.errors import FileError
-from specflow.importers.readers.cell_bytes import Irregular, scan_rows
+from specflow.importers.readers.cell_bytes import Cells, Irregular, scan_rows
 from specflow.importers.readers.cell_events import SheetEvents, SheetProblem
+from specflow.importers.readers.cell_values import CellValues
 from specflow.importers.readers.grid import CellRange, OddCells
 from specflow.importers.readers.odd_marks import OddMarks
 from specflow.importers.readers.styles import Styles
@@ -34,13 +35,26 @@ class SheetScan:
     hidden_rows: frozenset[int]
     hidden_columns: frozenset[int]
     merged: tuple[CellRange, ...]
+    has_values: bool = False
 
 
 def scan_sheet(
-    stream: Callable[[], Iterator[bytes]], styles: Styles, refuse: Callable[[str], FileError]
+    stream: Callable[[], Iterator[bytes]],
+    styles: Styles,
+    refuse: Callable[[str], FileError],
+    values: CellValues | None = None,
 ) -> SheetScan:
-    """Scan one sheet; ``stream`` opens its XML anew, ``refuse`` makes the error for a problem in it."""
+    """Scan one sheet; ``stream`` opens its XML anew, ``refuse`` makes the error for a problem in it.
+
+    ``values`` takes the values of the cells on the way; ``has_values`` says whether it got them all, which it does
+    where the sheet is written in the usual shape.
+    """
     try:
+        if values is not None:
+            try:
+                return replace(_scan_regular(stream(), styles, values.take), has_values=True)
+            except Irregular:
+                pass
         try:
             return _scan_regular(stream(), styles)
         except Irregular:
@@ -51,12 +65,14 @@ def scan_sheet(
         raise refuse(f"its XML is not well-formed ({error})") from error
 
 
-def _scan_regular(pieces: Iterator[bytes], styles: Styles) -> SheetScan:
+def _scan_regular(
+    pieces: Iterator[bytes], styles: Styles, take: Callable[[Cells], None] | None = None
+) -> SheetScan:
     marks = OddMarks()
     shell = SheetEvents(marks, styles)
     rest = _feed_head(pieces, shell)
     if rest is not None:
-        tail = _scan_body(rest, pieces, marks, styles)
+        tail = _scan_body(rest, pieces, lambda block: scan_rows(block, marks, styles, take))
         shell.feed(tail)
     for piece in pieces:
         shell.feed(piece)
@@ -99,15 +115,15 @@ def _feed_head(pieces: Iterator[bytes], shell: SheetEvents) -> bytes | None:
     return None
 
 
-def _scan_body(rest: bytes, pieces: Iterator[bytes], marks: OddMarks, styles: Styles) -> bytes:
+def _scan_body(rest: bytes, pieces: Iterator[bytes], scan: Callable[[bytes], None]) -> bytes:
     """Scan whole rows as they come; returns the bytes from the end of the rows on."""
     while True:
         if (end := rest.find(_END)) >= 0:
-            scan_rows(rest[:end], marks, styles)
+            scan(rest[:end])
             return rest[end:]
         whole = rest.rfind(b"</row>") + len(b"</row>")
         if whole >= len(b"</row>"):
-            scan_rows(rest[:whole], marks, styles)
+            scan(rest[:whole])
             rest = rest[whole:]
         elif len(rest) > MAX_ROW_BYTES:
             raise SheetProblem(f"one row is longer than {MAX_ROW_BYTES >> 20} MiB")

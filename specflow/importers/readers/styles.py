@@ -12,26 +12,28 @@ from specflow.importers.readers.number_format import odd_format
 @dataclass(frozen=True, slots=True)
 class Styles:
     """``odd[s]`` is the oddity of numbers in style ``s``. ``never_calculated`` says that the workbook was written by a
-    program that leaves the calculation to whoever opens it, so that a stored 0 is no result."""
+    program that leaves the calculation to whoever opens it, so that a stored 0 is no result. ``from_1904`` says that
+    days are counted from 1904 on, not from 1900."""
 
     odd: tuple[OddCell | None, ...] = ()
     never_calculated: bool = False
+    from_1904: bool = False
 
     def of(self, style: int) -> OddCell | None:
         """The oddity of numbers in this style; unknown styles are plain."""
         return self.odd[style] if 0 <= style < len(self.odd) else None
 
 
-def read_styles(root: Element | None, never_calculated: bool) -> Styles:
+def read_styles(root: Element | None, never_calculated: bool, from_1904: bool = False) -> Styles:
     """The styles of ``styles.xml`` (None: the workbook has none)."""
     if root is None:
-        return Styles((), never_calculated)
+        return Styles((), never_calculated, from_1904)
     codes = {
         _number(element, "numFmtId"): element.get("formatCode", "") for element in children(root, "numFmts")
     }
     formats = [_number(element, "numFmtId") for element in children(root, "cellXfs")]
     known = {number: odd_format(number, codes.get(number)) for number in set(formats)}
-    return Styles(tuple(known[number] for number in formats), never_calculated)
+    return Styles(tuple(known[number] for number in formats), never_calculated, from_1904)
 
 
 def children(root: Element, parent: str) -> list[Element]:

@@ -3,20 +3,30 @@
 from __future__ import annotations
 
 import io
+from collections.abc import Sequence
+from xml.parsers.expat import ExpatError
 
-from python_calamine import CalamineError, CalamineWorkbook, SheetVisibleEnum
+from python_calamine import CalamineSheet, CalamineWorkbook
 
 from specflow.errors import FileError
 from specflow.importers.readers.archive import Archive
-from specflow.importers.readers.book import read_book
-from specflow.importers.readers.grid import CellRange, Grid, OddCells, OddKind, address
+from specflow.importers.readers.book import Book, read_book
+from specflow.importers.readers.cell_values import CellValues
+from specflow.importers.readers.grid import CellRange, Grid, OddKind, address
+from specflow.importers.readers.shared_texts import read_shared_texts
 from specflow.importers.readers.sheet_scan import SheetScan, scan_sheet
 from specflow.importers.readers.source import Source
 from specflow.importers.readers.stores import Value
 from specflow.importers.readers.styles import Styles
 
 MAX_CELLS = 16_000_000
-"""The largest used range that is read. One stray cell in the last corner spans 17 thousand million."""
+"""The largest used range that is read cell by cell. One stray cell in the last corner spans 17 thousand million."""
+
+MAX_STREAMED_CELLS = 64_000_000
+"""The largest used range in typed columns, which take eight bytes a number where a Python list takes 32."""
+
+STREAMED_BYTES = 32 * 1024 * 1024
+"""Sheets whose XML is longer are read into typed columns: about 700,000 cells."""
 
 _TEXTS, _MACROS = "xl/sharedStrings.xml", "xl/vbaProject.bin"
 _OLE = b"\xd0\xcf\x11\xe0\xa1\xb1\x1a\xe1"
@@ -29,15 +39,16 @@ def read_xlsx(source: Source) -> list[Grid]:
     book = read_book(archive)
     if _TEXTS in archive:
         archive.check_text(_TEXTS)
-    notes = ("the file holds macros: they were not run",) if _MACROS in archive else ()
-    scans = {name: _scan(archive, name, part, book.styles) for name, part in book.sheets.items()}
-    if not any(scan.extent for scan in scans.values()):
+    sheets = [_Sheet(archive, name, part, book) for name, part in book.sheets.items()]
+    if not any(sheet.scan.extent for sheet in sheets):
         raise FileError(
             "no cell of the workbook holds anything",
             where=source.name,
             hint="check that it was saved with its data",
         )
-    return _read_values(source, archive, scans, notes)
+    _read_values(source, archive, [sheet for sheet in sheets if sheet.rows is None])
+    notes = ("the file holds macros: they were not run",) if _MACROS in archive else ()
+    return [sheet.grid(source.name, notes) for sheet in sheets]
 
 
 def open_archive(source: Source) -> Archive:
@@ -58,14 +69,66 @@ def open_archive(source: Source) -> Archive:
     raise FileError(message, where=source.name, hint=hint)
 
 
-def _scan(archive: Archive, name: str, part: str, styles: Styles) -> SheetScan:
+class _Sheet:
+    """One worksheet on its way to a grid; ``rows`` are None until its values have been read."""
+
+    def __init__(self, archive: Archive, name: str, part: str, book: Book) -> None:
+        self.name = name
+        self.hidden = name in book.hidden
+        self.rows: Sequence[list[Value]] | None = None
+        self.first_row, self.first_column = 1, 1
+        values = None
+        if archive.size(part) > STREAMED_BYTES:
+            values = CellValues(book.styles, _shared_texts(archive))
+        self.scan = _scan(archive, name, part, book.styles, values)
+        if self.scan.has_values and values is not None and self.scan.extent:
+            self.first_row, self.first_column = self.scan.extent.first_row, self.scan.extent.first_column
+            self.rows = values.columns(self.scan.extent)
+
+    def take(self, sheet: CalamineSheet) -> None:
+        """Take over the values that bulk reading gives."""
+        top, left = sheet.start or (0, 0)
+        rows: list[list[Value]] = sheet.to_python()
+        self.first_row, self.first_column = top + 1, left + 1
+        if self.scan.extent:
+            self.first_row, self.first_column = _cover(rows, top + 1, left + 1, self.scan.extent)
+        self.rows = rows
+
+    def grid(self, file: str, notes: tuple[str, ...]) -> Grid:
+        """The grid of the sheet."""
+        return Grid(
+            name=self.name,
+            rows=self.rows or [],
+            file=file,
+            first_row=self.first_row,
+            first_column=self.first_column,
+            odd=self.scan.odd,
+            hidden=self.hidden,
+            hidden_rows=self.scan.hidden_rows,
+            hidden_columns=self.scan.hidden_columns,
+            merged=self.scan.merged,
+            notes=notes,
+        )
+
+
+def _shared_texts(archive: Archive) -> list[str]:
+    if _TEXTS not in archive:
+        return []
+    try:
+        return read_shared_texts(archive.stream(_TEXTS))
+    except ExpatError as error:
+        raise archive.damaged(f"its shared texts are not well-formed XML ({error})") from error
+
+
+def _scan(archive: Archive, name: str, part: str, styles: Styles, values: CellValues | None) -> SheetScan:
     scan = scan_sheet(
-        lambda: archive.stream(part), styles, lambda what: archive.damaged(f"sheet {name!r}: {what}")
+        lambda: archive.stream(part), styles, lambda what: archive.damaged(f"sheet {name!r}: {what}"), values
     )
-    if scan.extent and _area(scan.extent) > MAX_CELLS:
+    most = MAX_STREAMED_CELLS if scan.has_values else MAX_CELLS
+    if scan.extent and _area(scan.extent) > most:
         far = address(scan.extent.last_row, scan.extent.last_column)
         raise FileError(
-            f"the used range {scan.extent} spans {_area(scan.extent):,} cells, more than {MAX_CELLS:,}",
+            f"the used range {scan.extent} spans {_area(scan.extent):,} cells, more than {most:,}",
             where=f"{archive.name}, {name}",
             hint=f"delete the stray cells towards {far}, or split the sheet",
         )
@@ -76,62 +139,36 @@ def _area(area: CellRange) -> int:
     return (area.last_row - area.first_row + 1) * (area.last_column - area.first_column + 1)
 
 
-def _read_values(
-    source: Source, archive: Archive, scans: dict[str, SheetScan], notes: tuple[str, ...]
-) -> list[Grid]:
-    name = ""
-    grids = []
+def _read_values(source: Source, archive: Archive, sheets: Sequence[_Sheet]) -> None:
+    """Read the values of these sheets in bulk."""
+    now: _Sheet | None = None
+    if not sheets:
+        return
     try:
         with CalamineWorkbook.from_filelike(io.BytesIO(source.content)) as book:
-            hidden = {
-                sheet.name: sheet.visible is not SheetVisibleEnum.Visible for sheet in book.sheets_metadata
-            }
-            for name, scan in scans.items():
-                grids.append(_grid(book, source.name, name, scan, hidden.get(name, False), notes))
-    except (CalamineError, ValueError, OSError) as error:
-        raise _unreadable(archive, name, str(error), scans) from error
+            for now in sheets:
+                now.take(book.get_sheet_by_name(now.name))
+    except Exception as error:  # the library raises whatever the file provokes
+        raise _unreadable(archive, now, str(error)) from error
     except BaseException as error:
         # a panic of the Rust library is no Exception and cannot be imported by name
         if type(error).__name__ != "PanicException":
             raise
-        raise _unreadable(archive, name, str(error), scans) from error
-    return grids
+        raise _unreadable(archive, now, str(error)) from error
 
 
-def _unreadable(archive: Archive, name: str, message: str, scans: dict[str, SheetScan]) -> FileError:
+def _unreadable(archive: Archive, sheet: _Sheet | None, message: str) -> FileError:
     """The bulk reader names no cell; where it stumbled over an error code of a cell, the scan knows the cell."""
-    for run in scans[name].odd if name in scans else OddCells():
+    if sheet is None:
+        return archive.damaged(message)
+    for run in sheet.scan.odd:
         if run.cell.kind is OddKind.ERROR and repr(run.cell.detail) in message:
             return FileError(
                 f"the error {run.cell.detail} is none that can be read",
-                where=f"{archive.name}, {name}, {address(run.first, run.column)}",
+                where=f"{archive.name}, {sheet.name}, {address(run.first, run.column)}",
                 hint="correct the formula or clear the cell",
             )
-    return archive.damaged(f"sheet {name!r}: {message}" if name else message)
-
-
-def _grid(
-    book: CalamineWorkbook, file: str, name: str, scan: SheetScan, hidden: bool, notes: tuple[str, ...]
-) -> Grid:
-    sheet = book.get_sheet_by_name(name)
-    top, left = sheet.start or (0, 0)
-    rows: list[list[Value]] = sheet.to_python()
-    first_row, first_column = top + 1, left + 1
-    if scan.extent:
-        first_row, first_column = _cover(rows, first_row, first_column, scan.extent)
-    return Grid(
-        name=name,
-        rows=rows,
-        file=file,
-        first_row=first_row,
-        first_column=first_column,
-        odd=scan.odd,
-        hidden=hidden,
-        hidden_rows=scan.hidden_rows,
-        hidden_columns=scan.hidden_columns,
-        merged=scan.merged,
-        notes=notes,
-    )
+    return archive.damaged(f"sheet {sheet.name!r}: {message}")
 
 
 def _cover(rows: list[list[Value]], first_row: int, first_column: int, extent: CellRange) -> tuple[int, int]:

@@ -220,5 +220,5 @@ def test_a_panic_of_the_bulk_reader_is_one_message(tmp_path: Path, monkeypatch: 
     def panic(*_: object) -> None:
         raise PanicException("index out of bounds")
 
-    monkeypatch.setattr(xlsx, "_grid", panic)
+    monkeypatch.setattr(xlsx._Sheet, "take", panic)
     assert "damaged: sheet 'data': index out of bounds" in message_for(by_hand(tmp_path / "a.xlsx", ONE_CELL))
