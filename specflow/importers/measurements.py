@@ -75,6 +75,7 @@ def read_measurements(
             findings.append(_outside(grid, found.outside))
     findings += [_unused(file, layout, mapping_name) for layout in unused_layouts(given, located)]
     tables = [_read(one, context, person, include_hidden_rows) for one in located]
+    findings += [finding for table in tables for finding in table.findings]
     if not located:
         findings.append(_nothing(file, skipped))
     proposal = _proposal(located, context, person)

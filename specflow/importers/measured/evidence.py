@@ -18,6 +18,7 @@ from specflow.importers.measured.pivot import stack
 from specflow.importers.measured.rejects import Rejects
 from specflow.importers.measured.result import ColumnReading, MeasuredTable, Question, Role
 from specflow.importers.measured.selection import select_rows
+from specflow.importers.measured.slip_findings import slip_findings
 from specflow.importers.measured.stated import PERSON, Stated, collect
 from specflow.importers.measured.subject import find_block, item_name, item_notes
 from specflow.importers.measured.values import column_name, read_values
@@ -80,6 +81,7 @@ def read_table(located: LocatedTable, context: Context, person: Mapping[str, str
         rejected_cells=len(work.rejects.cells),
         blank=dict(work.rejects.blank),
         notes=(*work.notes, *(f"not used: {one}" for one in stated.unused)),
+        findings=tuple(work.findings),
         mapping_from=located.mapping_from,
         document=document,
         columns=columns,
@@ -213,6 +215,7 @@ def _evidence(
     if work.questions or block is None or not columns.conditions.size or not values.documents:
         return None, None
     identity = Identity(block, method, stage, key, title, sheet)
+    work.findings += slip_findings(work, columns, values.documents)
     document = make_document(work, identity, values.documents, conditions.documents, columns)
     return (None, None) if document is None else (document, columns)
 

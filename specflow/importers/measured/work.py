@@ -14,6 +14,7 @@ from specflow.importers.measured.rejects import Rejects
 from specflow.importers.measured.result import Question, Role
 from specflow.importers.measured.stated import Stated
 from specflow.importers.measured.tables import FoundTable
+from specflow.model.finding import Finding
 
 
 @dataclass
@@ -28,6 +29,7 @@ class TableWork:
     meanings: tuple[ColumnMeaning, ...] = ()
     questions: list[Question] = field(default_factory=list)
     notes: list[str] = field(default_factory=list)
+    findings: list[Finding] = field(default_factory=list)
     rows: Rows = field(default_factory=lambda: np.zeros(0, np.int32))
 
     def of(self, *roles: Role) -> list[ColumnMeaning]:
