@@ -7,14 +7,14 @@ matches.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
 from specflow.conditions.axes import Axis, Floats, NumericAxis, TextAxis
 from specflow.conditions.points import LARGEST_KEY, Points
-from specflow.conditions.recorded import recorded_words, recording_note
+from specflow.conditions.recorded import recorded_words, recording_note, spans_in
 from specflow.conditions.search import nearest_points
 from specflow.model.columns import Columns
 
@@ -29,7 +29,7 @@ class Matching:
 
     ``along`` is the actual value along the range, None where the points are single values. ``ambiguous`` are
     the records within the tolerance of several points. ``notes`` say which units were converted or could not
-    be.
+    be. ``whole``: pairs whose record speaks for the whole range (a derived value); None where none does.
     """
 
     record: Rows
@@ -37,6 +37,7 @@ class Matching:
     along: Floats | None
     ambiguous: Rows
     notes: tuple[str, ...] = ()
+    whole: NDArray[np.bool_] | None = None
 
 
 def match(points: Points, records: Columns) -> Matching:
@@ -52,7 +53,8 @@ def match(points: Points, records: Columns) -> Matching:
         everyone = np.ones(records.size, np.bool_)
         nobody = np.zeros(0, np.intp), np.zeros(0, np.int32)
         record, point, ambiguous = _search_crowded(points, seen, *nobody, everyone)
-    return _sorted(points, seen, record, point, ambiguous.astype(np.int32), notes)
+    found = _sorted(points, seen, record, point, ambiguous.astype(np.int32), notes)
+    return replace(found, whole=_whole(points, records, found.record)) if records.spans else found
 
 
 def unstated_conditions(points: Points, records: Columns) -> dict[str, Rows]:
@@ -72,10 +74,36 @@ def _read(axes: tuple[Axis, ...], records: Columns) -> list[Floats] | None:
     seen = []
     for axis in axes:
         actual = axis.read(records)
+        if records.spans:
+            actual = _with_spans(axis, records, actual)
         if actual is None:
             return None
         seen.append(actual)
     return seen
+
+
+def _with_spans(axis: Axis, records: Columns, actual: Floats | None) -> Floats | None:
+    """Place the records that speak for a whole required range at its lower end."""
+    speaks = _speaks_for(axis, records)
+    if speaks is None or not speaks.any():
+        return actual
+    assert isinstance(axis, NumericAxis) and axis.extent is not None
+    start = axis.extent.low
+    return np.where(speaks, start, np.full(records.size, np.nan) if actual is None else actual)
+
+
+def _speaks_for(axis: Axis, records: Columns) -> NDArray[np.bool_] | None:
+    """Return which records speak for all of a range: from end to end, with no gap above its step; None for no range."""
+    if not isinstance(axis, NumericAxis) or axis.extent is None or axis.extent.turn:
+        return None
+    extent, spans = axis.extent, spans_in(records.spans.get(axis.name), axis.unit, records.size)
+    gap = np.inf if extent.largest_gap is None else extent.largest_gap
+    return np.asarray((spans.low <= extent.start_by) & (spans.high >= extent.end_from) & (spans.gap <= gap))
+
+
+def _whole(points: Points, records: Columns, record: Rows) -> NDArray[np.bool_] | None:
+    speaks = None if points.range_axis is None else _speaks_for(points.range_axis, records)
+    return None if speaks is None else speaks[record]
 
 
 def _by_key(

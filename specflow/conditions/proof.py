@@ -2,10 +2,14 @@
 
 A single point is proved by one good record that serves it. A range is proved when good records reach both
 ends within the setting tolerance and leave no gap between neighbours larger than its step; it is not matched
-against an invented grid. A full turn has no ends: the gap across its start counts like any other.
+against an invented grid. One record that speaks for the whole of it (a value derived over the range, from raw
+data that reach both ends and leave no such gap) proves it alone. A full turn has no ends: the gap across its
+start counts like any other.
 """
 
 from __future__ import annotations
+
+from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -26,6 +30,9 @@ def proves(points: Points, matching: Matching, good: Good) -> Good:
     point = matching.point[chosen]
     if matching.along is None or len(point) == 0:
         return proved_singly(point, points.size)
+    if matching.whole is not None and matching.whole.any():
+        singly = proved_singly(point[matching.whole[chosen]], points.size)
+        return singly | proves(points, _in_parts(matching), good)
     proved = np.zeros(points.size, np.bool_)
     extent = range_extent(points)
     along = matching.along[chosen]
@@ -48,6 +55,19 @@ def proved_singly(places: NDArray[np.int32] | NDArray[np.intp], size: int) -> Go
     return proved
 
 
+def _in_parts(matching: Matching) -> Matching:
+    """Return the pairs whose records speak for single values of a range."""
+    assert matching.whole is not None and matching.along is not None
+    parts = ~matching.whole
+    return replace(
+        matching,
+        record=matching.record[parts],
+        point=matching.point[parts],
+        along=matching.along[parts],
+        whole=None,
+    )
+
+
 def range_gaps(points: Points, matching: Matching, good: Good, point: int) -> tuple[tuple[float, float], ...]:
     """Return the parts of a range point that the good records leave unproved, as (from, to) along the range.
 
@@ -58,7 +78,10 @@ def range_gaps(points: Points, matching: Matching, good: Good, point: int) -> tu
     extent = range_extent(points)
     if extent.largest_gap is None:
         return ()
-    along = matching.along[good[matching.record] & (matching.point == point)]
+    chosen = good[matching.record] & (matching.point == point)
+    if matching.whole is not None and (chosen & matching.whole).any():
+        return ()
+    along = matching.along[chosen]
     if len(along) == 0:
         return ((extent.low, extent.high),)
     gaps = []

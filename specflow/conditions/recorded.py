@@ -12,7 +12,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.errors import UnitError
-from specflow.model.columns import Columns, TextColumn
+from specflow.model.columns import Columns, Spans, TextColumn
 from specflow.units import Converter, converter, parse_unit
 
 _PLAIN = {"", "1"}  # both say: a plain number
@@ -40,6 +40,20 @@ def recorded_numbers(records: Columns, name: str, unit: str) -> NDArray[np.float
         return actual
     step = conversion(recorded, unit)
     return None if isinstance(step, str) else np.asarray(step(actual), np.float64)
+
+
+def spans_in(spans: Spans | None, unit: str, size: int) -> Spans:
+    """Return ranges in ``unit``; rows without one, or in a unit of another kind, speak for nothing (NaN)."""
+    nothing = np.full(size, np.nan)
+    if spans is None:
+        return Spans(nothing, nothing, nothing, unit)
+    if spans.unit == unit or {spans.unit, unit} <= _PLAIN:
+        return spans
+    step, difference = conversion(spans.unit, unit), conversion(spans.unit, unit, difference=True)
+    if isinstance(step, str) or isinstance(difference, str):
+        return Spans(nothing, nothing, nothing, unit)
+    low, high, gap = step(spans.low), step(spans.high), difference(spans.gap)
+    return Spans(np.asarray(low), np.asarray(high), np.asarray(gap), unit)
 
 
 def recorded_words(records: Columns, name: str) -> TextColumn | None:

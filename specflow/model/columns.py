@@ -43,16 +43,32 @@ class TextColumn:
 
 
 @dataclass(frozen=True, slots=True)
+class Spans:
+    """What each row speaks for along one dimension: ``low`` to ``high`` with no gap above ``gap``; NaN for nothing."""
+
+    low: NDArray[np.float64]
+    high: NDArray[np.float64]
+    gap: NDArray[np.float64]
+    unit: str = ""
+
+    def take(self, rows: NDArray[np.intp]) -> Spans:
+        """Return the rows asked for, in that order."""
+        return Spans(self.low[rows], self.high[rows], self.gap[rows], self.unit)
+
+
+@dataclass(frozen=True, slots=True)
 class Columns:
     """Named columns of equal length.
 
-    ``numeric``: float64 (n,), NaN where unstated, in ``units[name]``; ``text``: words.
+    ``numeric``: float64 (n,), NaN where unstated, in ``units[name]``; ``text``: words. ``spans``: ranges that rows
+    speak for as a whole (those of derived values), by dimension.
     """
 
     size: int
     numeric: Mapping[str, NDArray[np.float64]] = field(default_factory=dict)
     text: Mapping[str, TextColumn] = field(default_factory=dict)
     units: Mapping[str, str] = field(default_factory=dict)
+    spans: Mapping[str, Spans] = field(default_factory=dict)
 
     @property
     def names(self) -> tuple[str, ...]:
@@ -66,4 +82,5 @@ class Columns:
             {name: values[rows] for name, values in self.numeric.items()},
             {name: column.take(rows) for name, column in self.text.items()},
             self.units,
+            {name: spans.take(rows) for name, spans in self.spans.items()},
         )

@@ -3,12 +3,16 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
 
+from specflow.conditions.recorded import spans_in
 from specflow.errors import UnitError
-from specflow.model.columns import UNSTATED, Columns, TextColumn
+from specflow.model.columns import UNSTATED, Columns, Spans, TextColumn
+from specflow.model.derivation import Covered
+from specflow.model.evidence import EvidenceColumns
 from specflow.units import convert, parse_unit
 
 
@@ -30,7 +34,32 @@ def stack(parts: Sequence[Columns]) -> Columns:
         },
         {name: stack_words([_words(part, name) for part in parts]) for name in text_names},
         {name: unit for name, unit in units.items() if name in numeric_names},
+        _stacked_spans(parts),
     )
+
+
+def _stacked_spans(parts: Sequence[Columns]) -> dict[str, Spans]:
+    """Return the ranges that rows speak for; those of a part that speaks in another unit are converted."""
+    first = {name: spans.unit for part in reversed(parts) for name, spans in part.spans.items()}
+    return {name: _spans_in(parts, name, unit) for name, unit in first.items()}
+
+
+def _spans_in(parts: Sequence[Columns], name: str, unit: str) -> Spans:
+    found = [spans_in(part.spans.get(name), unit, part.size) for part in parts]
+    low, high, gap = (np.concatenate([getattr(one, end) for one in found]) for end in ("low", "high", "gap"))
+    return Spans(low, high, gap, unit)
+
+
+def speaking(covers: Sequence[Covered], columns: EvidenceColumns) -> EvidenceColumns:
+    """Return the arrays of a derived table with the ranges that its rows speak for."""
+    size = columns.conditions.size
+    spans = {
+        one.dimension: Spans(
+            np.full(size, one.low), np.full(size, one.high), np.full(size, one.largest_gap), one.unit
+        )
+        for one in covers
+    }
+    return replace(columns, conditions=replace(columns.conditions, spans=spans))
 
 
 def stack_words(columns: Sequence[TextColumn]) -> TextColumn:

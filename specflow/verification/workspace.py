@@ -25,7 +25,7 @@ from specflow.model.block import Block, HardwareType, Item
 from specflow.model.columns import Columns, TextColumn
 from specflow.model.conditions import ConditionMap, ConditionsSet
 from specflow.model.declared import DeclaredValue
-from specflow.model.evidence import EvidenceColumns, EvidenceFile, FileKind, ItemChange
+from specflow.model.evidence import EvidenceColumns, EvidenceFile, EvidenceTable, FileKind, ItemChange
 from specflow.model.project import Policy
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Snapshot
@@ -39,7 +39,7 @@ from specflow.verification.limit_inputs import is_plain
 from specflow.verification.map_choice import MapChoice
 from specflow.verification.records import Held, Records, Source, gather, no_records
 from specflow.verification.residuals import Residuals
-from specflow.verification.stacking import stack
+from specflow.verification.stacking import speaking, stack
 from specflow.verification.standing import RowStanding, StandingRegister
 
 #: The one point of a requirement without a conditions set: every record serves it.
@@ -122,13 +122,22 @@ class Workspace:
             tables.update(dict.fromkeys(source.table.id for source in self.sources.get(key, ())))
         wanted = [table for table in tables if table not in self._columns]
         if wanted:
-            self._columns.update(self.snapshot.load_columns(wanted))
+            self._load(wanted)
 
     def columns(self, table: str) -> EvidenceColumns:
         """Return the arrays of one table."""
         if table not in self._columns:
-            self._columns.update(self.snapshot.load_columns([table]))
+            self._load([table])
         return self._columns[table]
+
+    def _load(self, tables: Sequence[str]) -> None:
+        """Load arrays; rows of a table derived over a range speak for that range."""
+        loaded = dict(self.snapshot.load_columns(tables))
+        for code in tables:
+            table = self.snapshot.find(EvidenceTable, code)
+            if table is not None and table.covers:
+                loaded[code] = speaking(table.covers, loaded[code])
+        self._columns.update(loaded)
 
     def item(self, name: str) -> Item | None:
         """Return a registered item by its id or serial."""
