@@ -155,9 +155,12 @@ class Grid:
     @property
     def last_column(self) -> int:
         """Column number of the last column of the widest row."""
+        return self.first_column + self._width - 1
+
+    @property
+    def _width(self) -> int:
         rows = self.rows
-        width = rows.width if isinstance(rows, CellStore) else max(map(len, rows), default=0)
-        return self.first_column + width - 1
+        return rows.width if isinstance(rows, CellStore) else max(map(len, rows), default=0)
 
     def value(self, row: int, column: int) -> Value:
         """The cell at (row, column); ``""`` for an empty cell and for every place outside the used range."""
@@ -270,22 +273,26 @@ class Grid:
         first = max(area.first_column - self.first_column, 0)
         stop = max(area.last_column + 1 - self.first_column, 0)
         top = max(area.first_row - self.first_row, 0)
-        rows = self.rows[top : max(area.last_row + 1 - self.first_row, 0)]
+        below = max(area.last_row + 1 - self.first_row, 0)
+        rows: Sequence[list[Value]]
+        if isinstance(self.rows, CellStore):
+            rows = self.rows.cut(top, below, first, stop)
+        else:
+            rows = [cells[first:stop] for cells in self.rows[top:below]]
         return replace(
             self,
-            rows=[cells[first:stop] for cells in rows],
+            rows=rows,
             first_row=self.first_row + top,
             first_column=self.first_column + first,
             merged=tuple(one for one in self.merged if one.touches(area)),
-            comment_rows=frozenset(row for row in self.comment_rows if area.first_row <= row <= area.last_row),
+            comment_rows=frozenset(
+                row for row in self.comment_rows if area.first_row <= row <= area.last_row
+            ),
         )
 
     def turn(self) -> Grid:
         """The grid with rows and columns changed; what is said of columns then is said of true rows."""
-        width = max(map(len, self.rows), default=0)
-        rows: list[list[Value]] = [
-            [cells[place] if place < len(cells) else "" for cells in self.rows] for place in range(width)
-        ]
+        rows = [_column_of(self.rows, place, 0, len(self.rows)) for place in range(self._width)]
         runs = [
             OddRun(row, run.column, run.column, run.cell)
             for run in self.odd

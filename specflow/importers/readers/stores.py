@@ -53,6 +53,10 @@ class CellStore(Sequence[list[Value]]):
     def has_numbers(self, place: int, start: int, stop: int) -> bool:
         """Whether a cell of these rows may be something else than text."""
 
+    def cut(self, first_row: int, stop_row: int, first: int, stop: int) -> CellStore:
+        """The cells of rows ``first_row`` up to ``stop_row`` in columns ``first`` up to ``stop``, not copied."""
+        return CutStore(self, first_row, stop_row, first, stop)
+
     def __iter__(self) -> Iterator[list[Value]]:
         return map(self.cells_of, range(len(self)))
 
@@ -67,6 +71,40 @@ class CellStore(Sequence[list[Value]]):
         if not 0 <= row < len(self):
             raise IndexError("no such row")
         return self.cells_of(row)
+
+
+class CutStore(CellStore):
+    """A part of another store, seen through it."""
+
+    def __init__(self, whole: CellStore, first_row: int, stop_row: int, first: int, stop: int) -> None:
+        self._whole = whole
+        self._top, self._left = min(first_row, len(whole)), min(first, whole.width)
+        self._rows = max(min(stop_row, len(whole)) - self._top, 0)
+        self.width = max(min(stop, whole.width) - self._left, 0)
+
+    def __len__(self) -> int:
+        return self._rows
+
+    def cells_of(self, row: int) -> list[Value]:
+        return self._whole.cells_of(row + self._top)[self._left : self._left + self.width]
+
+    def value(self, row: int, place: int) -> Value:
+        return self._whole.value(row + self._top, place + self._left) if place < self.width else ""
+
+    def column(self, place: int, start: int, stop: int) -> list[Value]:
+        if place >= self.width:
+            return [""] * (stop - start)
+        return self._whole.column(place + self._left, start + self._top, stop + self._top)
+
+    def numbers(self, place: int, start: int, stop: int) -> tuple[Floats, Flags] | None:
+        if place >= self.width:
+            return np.full(stop - start, np.nan), np.zeros(stop - start, bool)
+        return self._whole.numbers(place + self._left, start + self._top, stop + self._top)
+
+    def has_numbers(self, place: int, start: int, stop: int) -> bool:
+        return place < self.width and self._whole.has_numbers(
+            place + self._left, start + self._top, stop + self._top
+        )
 
 
 @dataclass(frozen=True, slots=True)

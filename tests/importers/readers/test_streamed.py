@@ -13,8 +13,8 @@ import xlsxwriter
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from specflow.importers.readers import Grid, open_grids, xlsx
-from specflow.importers.readers.stores import TypedColumns
+from specflow.importers.readers import CellRange, Grid, open_grids, xlsx
+from specflow.importers.readers.stores import CellStore, TypedColumns
 from tests.importers.readers.test_published import WORKBOOKS
 from tests.importers.readers.workbooks import MAIN, by_hand, refused
 
@@ -87,6 +87,17 @@ def assert_same(one: Grid, other: Grid) -> None:
         assert bad == known_bad
     for row in range(first, stop):
         assert "".join(map(str, one.row(row))) == "".join(map(str, other.row(row)))
+
+
+def test_a_cut_and_a_turn_show_the_same_cells(monkeypatch: pytest.MonkeyPatch) -> None:
+    path = next(path for path in WORKBOOKS if path.name == "rx_noise_temp_chain.xlsx")
+    area = CellRange(9, 2, 22, 7)
+    for one, other in zip(streamed(path, monkeypatch), open_grids(path), strict=True):
+        assert isinstance(one.cut(area).rows, CellStore)
+        assert_same(one.cut(area), other.cut(area))
+        assert_same(one.turn(), other.turn())
+        assert one.cut(area).rows[1:3] == other.cut(area).rows[1:3]
+        assert one.cut(area).rows[-1] == other.cut(area).rows[-1]
 
 
 @pytest.mark.parametrize("path", WORKBOOKS, ids=lambda path: path.name)
