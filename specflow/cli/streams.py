@@ -38,8 +38,10 @@ def prepare_streams() -> None:
 
 def fitting(text: str) -> str:
     """Return the text as stdout will show it, so that columns of it are of the right width."""
+    if text.isascii():
+        return text
     encoding = _encoding()
-    return text if text.isascii() or encoding.startswith("utf") else _as_shown(text, encoding)
+    return text if encoding.startswith("utf") else _as_shown(text, encoding)
 
 
 def is_unicode() -> bool:

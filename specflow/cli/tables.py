@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import sys
+from functools import lru_cache
 from typing import Any
 from unicodedata import combining, east_asian_width
 
@@ -56,6 +57,7 @@ def _set(text: str, width: int, align: Align) -> str:
     return blanks + text if align is Align.RIGHT else text + blanks
 
 
+@lru_cache(maxsize=4096)  # the same words (a point, a state) stand in many rows
 def _width(text: str) -> int:
     """Return how many places a text takes: marks set on a letter take none, ideographs two (Unicode annex 11)."""
     if text.isascii():

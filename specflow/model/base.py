@@ -11,6 +11,7 @@ from pydantic import AfterValidator, BaseModel, ConfigDict
 MAX_CODE_LENGTH = 80
 
 
+@lru_cache(maxsize=1 << 16)  # the codes of a project come again in every document that names them
 def clean_code(text: str) -> str:
     """Return a code as it is stored: NFC, outer blanks removed.
 

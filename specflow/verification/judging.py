@@ -1,4 +1,4 @@
-"""Judging the readings of one limit, one by one; ``grouped`` judges those of which others must be taken into account."""
+"""Judging the readings of one limit, one by one; ``grouped`` does it where others must be taken into account."""
 
 from __future__ import annotations
 
