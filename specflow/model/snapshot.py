@@ -146,13 +146,15 @@ class Results:
     """What is computed from a snapshot: the status of every requirement, by its key, and points in words.
 
     ``as_of`` is the date of judgement (ISO), an explicit input; ``unmatched`` are tables that serve no requirement.
-    ``budgets`` holds what was found of budgets that are allocated, by their key.
+    ``budgets`` holds what was found of budgets that are allocated, by their key. ``outdated`` are derived tables, by
+    key, that do not stand any more on what they were made from, with the reason.
     """
 
     as_of: str
     statuses: Mapping[str, RequirementStatus] = field(default_factory=dict)
     unmatched: Mapping[str, str] = field(default_factory=dict)
     budgets: Mapping[str, BudgetStanding] = field(default_factory=dict)
+    outdated: Mapping[str, str] = field(default_factory=dict)
 
     def of(self, requirement: str) -> RequirementStatus:
         """Return the status of one requirement; KeyError when it was not computed."""

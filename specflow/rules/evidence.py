@@ -197,6 +197,22 @@ def provisional_evidence(facts: Facts) -> Iterator[Found]:
             yield Found(table.id, "not accepted yet", origin=facts.place(table), related=(table.file,))
 
 
+def outdated_derivation(facts: Facts) -> Iterator[Found]:
+    """A derived table was made from what does not stand any more.
+
+    Why: the number is right for data that was replaced or found wrong; a pass of it does not count.
+    Fails: the trace behind a ripple was measured again and superseded.
+    Passes: the table was derived again from the new trace, and supersedes the earlier one.
+    Do: derive it again (specflow derive --again), or withdraw it.
+    """
+    gone = facts.replaced_tables
+    for table in facts.snapshot.tables:
+        reason = facts.results.outdated.get(code_key(table.id))
+        if reason and code_key(table.id) not in gone:
+            related = () if table.derivation is None else (table.derivation,)
+            yield Found(table.id, reason, origin=facts.place(table), related=related)
+
+
 def calibration_lapsed(facts: Facts) -> Iterator[Found]:
     """An instrument was used after its calibration had run out.
 

@@ -14,7 +14,14 @@ from specflow.limits.tree import undefined_in
 from specflow.model.base import code_key
 from specflow.model.conditions import ConditionsSet
 from specflow.model.decision import Nonconformance, Waiver
-from specflow.model.evidence import SOURCE_COLUMN, EvidenceColumns, EvidenceFile, EvidenceTable
+from specflow.model.evidence import (
+    SOURCE_COLUMN,
+    EvidenceColumns,
+    EvidenceFile,
+    EvidenceTable,
+    Supersession,
+    Withdrawal,
+)
 from specflow.model.limit import LimitState
 from specflow.model.origin import Origin, column_number
 from specflow.model.requirement import Requirement
@@ -49,6 +56,14 @@ class Facts:
     def as_of(self) -> date:
         """The date of judgement."""
         return date.fromisoformat(self.results.as_of)
+
+    @cached_property
+    def replaced_tables(self) -> frozenset[str]:
+        """Keys of the tables that were superseded or withdrawn as a whole."""
+        superseded = {code_key(one.earlier) for one in self.snapshot.all(Supersession) if one.rows is None}
+        return frozenset(
+            superseded | {code_key(one.table) for one in self.snapshot.all(Withdrawal) if one.rows is None}
+        )
 
     @cached_property
     def judged(self) -> Sequence[Judged]:

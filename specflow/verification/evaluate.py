@@ -47,7 +47,8 @@ def _evaluated(
             statuses[key] = replace(found, mismatches=(*found.mismatches, *mismatches))
     if asked is not None:
         return Results(as_of.isoformat(), {key: one for key, one in statuses.items() if key in asked})
-    return Results(as_of.isoformat(), statuses, unmatched(workspace))
+    outdated = workspace.register.outdated
+    return Results(as_of.isoformat(), statuses, unmatched(workspace), outdated=outdated)
 
 
 def _wanted(snapshot: Snapshot, decisions: Decisions, asked: Collection[str] | None) -> Sequence[Requirement]:

@@ -2,9 +2,9 @@
 
 *Withdrawn*: found wrong. *Superseded*: replaced by named rows of another table; a failing reading stays open until
 the supersession names it *and* an accepted reading of the successor decides the same point (see ``grid``). *Stale*: a
-change record took effect after the reading was taken. *Provisional*: not accepted yet, dated after the day of
-judgement, or taken with an instrument whose calibration had run out; without a date, if that was before the reading
-was accepted.
+change record took effect after the reading was taken, or what a derived value was made from does not stand any more
+(see ``outdated``). *Provisional*: not accepted yet, dated after the day of judgement, or taken with an instrument whose
+calibration had run out; without a date, if that was before the reading was accepted.
 """
 
 from __future__ import annotations
@@ -26,6 +26,7 @@ from specflow.model.snapshot import Snapshot
 from specflow.model.verdict import Standing
 from specflow.verification.changed import Touch, touched
 from specflow.verification.dates import day_of, is_after
+from specflow.verification.outdated import outdated_tables
 
 Codes = NDArray[np.int8]
 #: Rows that were replaced by name, and the keys of the tables that replace them (and of those that replace these).
@@ -77,6 +78,7 @@ class StandingRegister:
     supersessions: Mapping[str, list[Supersession]]
     changes: Mapping[str, Sequence[Touch]]
     items: Mapping[str, Item] = field(default_factory=dict)
+    outdated: Mapping[str, str] = field(default_factory=dict)
 
     @classmethod
     def of(cls, snapshot: Snapshot, as_of: date) -> StandingRegister:
@@ -90,7 +92,12 @@ class StandingRegister:
             if not is_after(supersession.at, as_of):
                 supersessions[code_key(supersession.earlier)].append(supersession)
         return cls(
-            as_of, dict(withdrawals), dict(supersessions), touched(snapshot, as_of), snapshot.items_by_name
+            as_of,
+            dict(withdrawals),
+            dict(supersessions),
+            touched(snapshot, as_of),
+            snapshot.items_by_name,
+            outdated_tables(snapshot, withdrawals, supersessions),
         )
 
     def standing(
@@ -105,6 +112,8 @@ class StandingRegister:
             _mark(codes, rows, PROVISIONAL, reason, reasons)
         for reason, rows in self._stale(table, parameter, items, dates):
             _mark(codes, rows, STALE, reason, reasons)
+        if outdated := self.outdated.get(code_key(table.id)):
+            _mark(codes, np.ones(table.rows, bool), STALE, outdated, reasons)
         replaced: list[Replacement] = []
         for supersession in self.supersessions.get(code_key(table.id), ()):
             code = REPLACED if supersession.names_fail else SUPERSEDED
@@ -134,7 +143,8 @@ class StandingRegister:
         key = code_key(table.id)
         taken = table.performed_on is not None and dates is None and table.performed_on <= self.as_of
         plain = taken and bool(table.accepted_by) and not table.provisional and not table.equipment
-        known = key in self.supersessions or key in self.withdrawals or code_key(table.block) in self.changes
+        recorded = key in self.supersessions or key in self.withdrawals or key in self.outdated
+        known = recorded or code_key(table.block) in self.changes
         return plain and not known
 
     def _provisional(

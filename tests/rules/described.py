@@ -18,6 +18,7 @@ from specflow.model.columns import Columns, TextColumn
 from specflow.model.conditions import ConditionsSet
 from specflow.model.decision import Approval, DeclaredSplit, Disposition, Nonconformance, Waiver
 from specflow.model.declared import DeclaredValue
+from specflow.model.derivation import Derivation
 from specflow.model.evidence import (
     ConditionColumn,
     EvidenceColumns,
@@ -52,6 +53,7 @@ _PLAIN: Mapping[str, tuple[type[Document], Callable[[Fields], Fields]]] = {
     "budgets": (Budget, lambda row: {"law": "cascade"}),
     "changes": (ItemChange, lambda row: {"description": "changed"}),
     "supersessions": (Supersession, lambda row: {"id": f"{row['earlier']}/{row['later']}"}),
+    "derivations": (Derivation, lambda row: {"digests": [""] * len(row["inputs"]), "law": "worst", "unit": "dB"}),
     "withdrawals": (Withdrawal, lambda row: {"id": f"{row['table']}/out"}),
     "nonconformances": (Nonconformance, lambda row: {"description": "misses its limit"}),
     "waivers": (Waiver, lambda row: {"reason": "invented"}),
