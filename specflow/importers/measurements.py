@@ -9,7 +9,7 @@ from pathlib import Path
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.document import PROVISIONAL_FILE
 from specflow.importers.measured.evidence import collected, read_table
-from specflow.importers.measured.located import GivenMappings, LocatedTable, locate_tables, unused_layouts
+from specflow.importers.measured.located import GivenMappings, LocatedTable, Mappings, locate_tables
 from specflow.importers.measured.mapping import read_mappings, write_mapping
 from specflow.importers.measured.meaning import read_meanings
 from specflow.importers.measured.proposal import Proposal, propose
@@ -61,19 +61,20 @@ def read_measurements(
     """
     context = Context(snapshot, dictionary)
     given = GivenMappings(read_mappings(mapping, mapping_name) if mapping else (), mapping_name)
+    mappings = Mappings(given, context)
     file = open_grids(path)
     person = dict(stated or {})
     skipped: list[str] = []
     findings: list[Finding] = []
     located: list[LocatedTable] = []
     for grid in _chosen(file, sheets, skipped):
-        found = locate_tables(grid, context, given)
+        found = locate_tables(grid, context, mappings)
         located += found.tables
         skipped += found.skipped
         findings += [_finding(grid, note) for note in grid.notes]
         if found.outside:
             findings.append(_outside(grid, found.outside))
-    findings += [_unused(file, layout, mapping_name) for layout in unused_layouts(given, located)]
+    findings += [_unused(file, layout, mapping_name) for layout in mappings.unused()]
     tables = [_read(one, context, person, include_hidden_rows) for one in located]
     findings += [finding for table in tables for finding in table.findings]
     if not located:
@@ -86,7 +87,11 @@ def _read(
     located: LocatedTable, context: Context, person: Mapping[str, str], include_hidden_rows: bool
 ) -> MeasuredTable:
     if include_hidden_rows:
-        located = replace(located, mapping=replace(located.mapping, include_hidden_rows=True))
+        located = replace(
+            located,
+            mapping=replace(located.mapping, include_hidden_rows=True),
+            read_as=replace(located.read_as, include_hidden_rows=True),
+        )
     table = _with_how_read(read_table(located, context, person), located, person)
     if not located.mapping_from:
         return table
@@ -137,7 +142,7 @@ def _proposal(located: Sequence[LocatedTable], context: Context, person: Mapping
     proposals = []
     for one in located:
         stated = collected(one, context, person)
-        meanings = read_meanings(one.table, context, one.mapping, stated)
+        meanings = read_meanings(one.table, context, one.read_as, stated)
         proposals.append(Proposal(one.table, one.key, one.mapping, meanings, one.preamble.title))
     return propose(proposals)
 

@@ -7,10 +7,13 @@ from functools import cached_property
 
 from specflow.conditions import find_dimension, is_unlocated_temperature
 from specflow.importers.measured.header_text import read_header
+from specflow.importers.measured.mapping import read_mappings
+from specflow.importers.measured.mapping_parts import LayoutMapping
 from specflow.importers.measured.quantity_text import name_quantity
 from specflow.importers.measured.roles import role_of_words, uncertainty_of
 from specflow.model.block import Block
 from specflow.model.conditions import ConditionsSet
+from specflow.model.evidence import TableMapping
 from specflow.model.snapshot import Snapshot
 from specflow.parameters import Dictionary
 
@@ -38,6 +41,14 @@ class Context:
         """The dimensions that some conditions set speaks of."""
         return frozenset(
             dimension.name for one in self.snapshot.all(ConditionsSet) for dimension in one.dimensions
+        )
+
+    @cached_property
+    def mappings(self) -> tuple[tuple[TableMapping, LayoutMapping], ...]:
+        """The mappings that the project keeps, the latest first."""
+        return tuple(
+            (one, read_mappings(one.toml, f"mapping {one.id}")[0])
+            for one in reversed(list(self.snapshot.all(TableMapping)))
         )
 
     def recognises(self, text: str) -> bool:

@@ -7,6 +7,7 @@ from typing import TypeVar
 
 import numpy as np
 
+from specflow.importers.measured.axis import add_axis
 from specflow.importers.measured.conditions import merged_items, read_conditions
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.document import Identity, make_document
@@ -24,7 +25,6 @@ from specflow.importers.measured.subject import find_block, item_name, item_note
 from specflow.importers.measured.values import column_name, read_values
 from specflow.importers.measured.words import fill_down, read_dates, read_words
 from specflow.importers.measured.work import TableWork
-from specflow.importers.readers import address, column_letter
 from specflow.model.base import code_key
 from specflow.model.columns import TextColumn
 from specflow.model.evidence import EvidenceColumns, EvidenceTable
@@ -40,7 +40,7 @@ def collected(located: LocatedTable, context: Context, person: Mapping[str, str]
     """What is said for a table by the person, its mapping and the file."""
     return collect(
         located.preamble.facts,
-        located.mapping.stated,
+        located.read_as.stated,
         person,
         sheet_facts=located.sheet_facts,
         own_dimensions=context.dimensions,
@@ -49,12 +49,13 @@ def collected(located: LocatedTable, context: Context, person: Mapping[str, str]
 
 def read_table(located: LocatedTable, context: Context, person: Mapping[str, str]) -> MeasuredTable:
     """Read one table; it has no document while a question is open or when no row is left."""
-    table, mapping, key = located.table, located.mapping, located.key
+    table, mapping, key = located.table, located.read_as, located.key
     stated = collected(located, context, person)
     sheet = "" if table.grid.name == table.grid.file else table.grid.name
     rejects = Rejects(sheet, keep_placeholders=mapping.keep_placeholders)
     work = TableWork(table, context, mapping, stated, rejects)
-    work.notes += [remark.words for remark in table.stepped_over]
+    work.notes += [*table.notes, *(remark.words for remark in table.stepped_over)]
+    work.questions += table.doubts
     _ask_about_remarks(work)
     _ask_about_groups(work)
     work.meanings = read_meanings(table, context, mapping, stated)
@@ -72,7 +73,7 @@ def read_table(located: LocatedTable, context: Context, person: Mapping[str, str
         sheet=sheet,
         place=table.place,
         title=title,
-        layout_key=key,
+        layout_key=located.kept_under,
         rows=len(work.rows) if columns is None else columns.conditions.size,
         values=0 if columns is None else _count(columns),
         recognised=(*stated.readings, *(meaning.reading() for meaning in work.meanings)),
@@ -91,12 +92,12 @@ def read_table(located: LocatedTable, context: Context, person: Mapping[str, str
 def _note_idle_entries(work: TableWork) -> None:
     """Say which entries of the mapping, or of the person, speak of columns that are not there."""
     headers = work.table.headers
-    letters = {column_letter(header.column) for header in headers} | set(
-        map(column_letter, work.table.unnamed)
+    letters = {header.letter for header in headers} | set(
+        map(work.table.grid.column_name, work.table.unnamed)
     )
     keys = {header_key(header.text) for header in headers}
     for entry in work.mapping.columns:
-        there = any(entry.is_about(header.text, column_letter(header.column)) for header in headers)
+        there = any(entry.is_about(header.text, header.letter) for header in headers)
         if not there and not (entry.column.upper() in letters and not entry.header):
             work.notes.append(
                 f"the mapping speaks of a column {entry.header or entry.column!r} that is not there"
@@ -134,7 +135,7 @@ def _ask_about_groups(work: TableWork) -> None:
         if says and over != columns:
             what = f"{text[:60]!r} is merged over some of the headers and may hold for their columns ({area})"
             remedy = "say it in each of these headers, give it a column of its own, or empty the cell"
-            work.ask("", address(area.first_row, area.first_column), what, remedy)
+            work.ask("", table.grid.address(area.first_row, area.first_column), what, remedy)
 
 
 def _ask_about_columns(work: TableWork) -> None:
@@ -142,9 +143,7 @@ def _ask_about_columns(work: TableWork) -> None:
     table = work.table
     for header in table.headers:
         if header.column in table.grid.hidden_columns:
-            work.notes.append(
-                f"column {column_letter(header.column)} is hidden in the file; it was read all the same"
-            )
+            work.notes.append(f"column {header.letter} is hidden in the file; it was read all the same")
     if _lies_on_its_side(work):
         remedy = "turn it (copy, paste special, transpose): one row of headers, one reading a row"
         what = "the table lies on its side, with its headers in the first column"
@@ -152,13 +151,14 @@ def _ask_about_columns(work: TableWork) -> None:
         return
     for column in table.unnamed:
         cells = table.cells(column)
-        letter = column_letter(column)
+        letter = table.grid.column_name(column)
         entry = work.mapping.column("", letter)
         if not cells.numeric[table.rows - table.first_row].any():
             work.notes.append(f"column {letter} has words and no header; it was not read")
         elif entry is None or entry.role != Role.NOT_READ:
             remedy = f'write a header, or column = "{letter}" with role = "not read" in a mapping'
-            work.ask("", f"{letter}{table.header_row}", f"column {letter}: numbers without a header", remedy)
+            cell = table.grid.address(table.header_row, column)
+            work.ask("", cell, f"column {letter}: numbers without a header", remedy)
     if not work.of(Role.VALUE, Role.PIVOT) and not work.questions:
         remedy = (
             "name the parameter in a mapping (--propose-mapping writes one), or skip = true for this layout"
@@ -191,6 +191,7 @@ def _evidence(
     conditions = read_conditions(work.table, work.meanings, work.stated, work.rows, work.rejects)
     work.questions += conditions.questions
     work.notes += conditions.notes
+    add_axis(work, conditions)
     values = read_values(work, conditions.columns)
     dates = work.of(Role.DATE)
     columns = EvidenceColumns(

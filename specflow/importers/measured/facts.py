@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from datetime import date, datetime
 
 from specflow.importers.measured.header_text import known_unit, read_header
-from specflow.importers.readers import Grid, OddKind, Value, address, is_blank, looks_numeric
+from specflow.importers.readers import Grid, OddKind, Value, is_blank, looks_numeric
 
 _PAIR = re.compile(r"^\s*(?P<key>[^:=]{1,60}?)\s*[:=]\s*(?P<value>.*)$", re.DOTALL)
 
@@ -55,8 +55,10 @@ def read_across(grid: Grid, key_row: int, value_row: int) -> tuple[Fact, ...]:
     for column, key in enumerate(grid.row(key_row), start=1):
         value = grid.value(value_row, column)
         if isinstance(key, str) and not is_blank(key) and not is_blank(value):
-            text = _value_text(grid, value_row, column, value, key)
-            facts.append(Fact(" ".join(key.split()).rstrip(":"), text, address(value_row, column), value_row))
+            text = value_text(grid, value_row, column, value, key)
+            facts.append(
+                Fact(" ".join(key.split()).rstrip(":"), text, grid.address(value_row, column), value_row)
+            )
     return tuple(facts)
 
 
@@ -81,16 +83,16 @@ def _facts(grid: Grid, row: int, cells: list[tuple[int, Value]]) -> Iterator[Fac
             continue
         pair = _PAIR.match(value)
         if pair and pair["value"]:
-            yield Fact(pair["key"].strip(), " ".join(pair["value"].split()), address(row, column), row)
+            yield Fact(pair["key"].strip(), " ".join(pair["value"].split()), grid.address(row, column), row)
         elif place < len(cells) and (pair or _is_key(value, cells[place][1], len(cells))):
             key = pair["key"].strip() if pair else value.strip()
             there, beside = cells[place]
             place += 1
-            text = _value_text(grid, row, there, beside, key)
+            text = value_text(grid, row, there, beside, key)
             if looks_numeric(text) and place < len(cells) and known_unit(str(cells[place][1])) is not None:
                 text = f"{text} {cells[place][1]}"
                 place += 1
-            yield Fact(key, text, address(row, there), row)
+            yield Fact(key, text, grid.address(row, there), row)
 
 
 def _is_key(text: str, beside: Value, cells: int) -> bool:
@@ -98,8 +100,8 @@ def _is_key(text: str, beside: Value, cells: int) -> bool:
     return cells % 2 == 0 or not isinstance(beside, str) or looks_numeric(beside)
 
 
-def _value_text(grid: Grid, row: int, column: int, value: Value, key: str) -> str:
-    """The value as text; a bare number takes the unit of its number format, or that of the key."""
+def value_text(grid: Grid, row: int, column: int, value: Value, key: str) -> str:
+    """Return the value as text; a bare number takes the unit of its number format, or that of the key."""
     if isinstance(value, datetime):
         return value.date().isoformat()
     if isinstance(value, date):

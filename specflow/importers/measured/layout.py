@@ -18,11 +18,19 @@ def layout_key(table: FoundTable) -> str:
         f"{header_key(header.text)}|{header_key(header.unit)}" + (f"|k={header.k:g}" if header.k else "")
         for header in table.headers
     ]
-    return "L-" + digest([sheet_pattern(table), headers])[:16]
+    told: list[object] = [sheet_pattern(table), headers]
+    if table.grid.turned:
+        told.append("turned")
+    if table.words_above:
+        told.append(list(table.words_above))
+    return "L-" + digest(told)[:16]
 
 
 def sheet_pattern(table: FoundTable) -> str:
     """Return the name of the sheet with runs of digits as ``#``; "" for a text file."""
-    if table.grid.name == table.grid.file:
-        return ""
-    return re.sub(r"\d+", "#", table.grid.name.strip().casefold())
+    return "" if table.grid.name == table.grid.file else name_pattern(table.grid.name)
+
+
+def name_pattern(name: str) -> str:
+    """Return a name with runs of digits as ``#``."""
+    return re.sub(r"\d+", "#", name.strip().casefold())

@@ -2,25 +2,34 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterable
 from dataclasses import dataclass, field
 
+from specflow.importers.measured.area import without
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.facts import Fact, Preamble, read_across, read_preamble
+from specflow.importers.measured.finding import find_all
 from specflow.importers.measured.layout import layout_key
-from specflow.importers.measured.mapping import LayoutMapping, read_mappings
+from specflow.importers.measured.mapping_parts import LayoutMapping
 from specflow.importers.measured.names import NAMES, canonical
+from specflow.importers.measured.parts import parts_of
+from specflow.importers.measured.place_facts import facts_of_cells
+from specflow.importers.measured.placed import clipped, first_row_above, table_in_area
+from specflow.importers.measured.settled import GivenMappings, Mappings, Settled, kept_under
 from specflow.importers.measured.stated import holds_below
-from specflow.importers.measured.tables import FoundTable, cut_table, find_tables, rows_of_numbers
-from specflow.importers.readers import Grid
-from specflow.model.evidence import TableMapping
+from specflow.importers.measured.tables import FoundTable, cut_table, rows_of_numbers
+from specflow.importers.readers import CellRange, Grid
+
+__all__ = ["GivenMappings", "LocatedTable", "LocatedTables", "Mappings", "locate_tables"]
 
 
 @dataclass(frozen=True, slots=True)
 class LocatedTable:
     """A table to be read; ``mapping_from`` says where its mapping is from ("" when there is none).
 
-    ``sheet_facts`` are said above an earlier table of the sheet and hold where ``preamble`` says nothing else.
+    ``mapping`` is as the person wrote it, ``read_as`` what is read of this part of the table. ``sheet_facts`` are said
+    above an earlier table of the sheet and hold where ``preamble`` says nothing else. ``kept_under`` is the key under
+    which the mapping is kept.
     """
 
     table: FoundTable
@@ -28,15 +37,9 @@ class LocatedTable:
     mapping: LayoutMapping
     mapping_from: str
     preamble: Preamble
-    sheet_facts: tuple[Fact, ...] = ()
-
-
-@dataclass(frozen=True, slots=True)
-class GivenMappings:
-    """The layouts of the mapping file that the person gave, and its name; none without a file."""
-
-    layouts: tuple[LayoutMapping, ...] = ()
-    name: str = ""
+    sheet_facts: tuple[Fact, ...]
+    read_as: LayoutMapping
+    kept_under: str
 
 
 @dataclass
@@ -48,39 +51,107 @@ class LocatedTables:
     outside: list[int] = field(default_factory=list)
 
 
-def locate_tables(grid: Grid, context: Context, given: GivenMappings) -> LocatedTables:
-    """Find the tables of a sheet, with their mappings."""
-    found = find_tables(grid, context.recognises)
-    located = LocatedTables()
-    where = grid.file if grid.name == grid.file else f"sheet {grid.name}"
-    if not found:
-        located.skipped.append(f"{where}: no table was found (a row of headers with numbers below)")
-        return located
-    above: tuple[Fact, ...] = ()
-    sheet_facts: tuple[Fact, ...] = ()
-    for table in found:
-        key = layout_key(table)
-        mapping, source = _mapping_for(key, given, context)
-        preamble = read_preamble(grid, table.top, table.header_row)
-        own = (*preamble.facts, *above)
+def locate_tables(grid: Grid, context: Context, mappings: Mappings) -> LocatedTables:
+    """Find the tables of a sheet, with their mappings: first those whose area a mapping states, then all others."""
+    locator = _Locator(grid, context, mappings)
+    areas, alone = locator.take_areas()
+    if alone is not None:
+        locator.found.skipped.append(f"{locator.where}: nothing else is read; {alone.source} says alone")
+        return locator.found
+    locator.search(without(grid, areas), bool(areas))
+    return locator.found
+
+
+class _Locator:
+    """Collects the tables of one sheet."""
+
+    def __init__(self, grid: Grid, context: Context, mappings: Mappings) -> None:
+        self.found = LocatedTables()
+        self.where = grid.file if grid.name == grid.file else f"sheet {grid.name}"
+        self._grid = grid
+        self._context = context
+        self._mappings = mappings
+
+    def take_areas(self) -> tuple[list[CellRange], Settled | None]:
+        """Take the tables whose areas are stated; return the areas, and the mapping that says there is no more."""
+        areas: list[CellRange] = []
+        alone: Settled | None = None
+        for one in self._mappings.of_areas(self._grid):
+            area = clipped(self._grid, one.mapping.area)
+            table = None if area is None else table_in_area(self._grid, one.mapping, self._context.recognises)
+            if area is None or table is None or any(area.touches(other) for other in areas):
+                continue
+            key = layout_key(table)
+            if one.mapping.layout != key and (one.mapping.layout or not one.by_hand):
+                continue
+            if not one.by_hand and not table.has_words:
+                continue
+            areas.append(area)
+            self._mappings.used.append(one.mapping)
+            alone = one if one.mapping.alone else alone
+            top = first_row_above(self._grid, area)
+            above = CellRange(top, area.first_column, area.first_row, area.last_column)
+            preamble = read_preamble(self._grid.cut(above), top, area.first_row)
+            self._add(table, key, one, preamble.facts, preamble.title, ())
+        return areas, alone
+
+    def search(self, grid: Grid, has_areas: bool) -> None:
+        """Find tables where none was stated."""
+        found = find_all(grid, self._context)
+        if not found and not has_areas:
+            self.found.skipped.append(
+                f"{self.where}: no table was found (a row of headers with numbers below)"
+            )
+        above: tuple[Fact, ...] = ()
+        sheet_facts: tuple[Fact, ...] = ()
+        for table in found:
+            preamble = read_preamble(table.grid, table.top, table.header_row)
+            own = (*table.facts, *preamble.facts, *above)
+            self._note_outside(table, preamble)
+            key = layout_key(table)
+            settled = self._mappings.of_table(key, own, table.has_words)
+            if settled is not None and settled.mapping.skip:
+                self.found.skipped.append(f"{self.where}, {table.place}: {settled.source} says skip")
+            elif settled is None and _speaks_of_tables_below(table):
+                above = (*own, *read_across(table.grid, table.header_row, int(table.rows[0])))
+                continue
+            else:
+                self._add(table, key, settled, own, preamble.title, sheet_facts)
+            sheet_facts = (*filter(holds_below, own), *sheet_facts)
+            above = ()
+
+    def _note_outside(self, table: FoundTable, preamble: Preamble) -> None:
         told = {fact.row for fact in preamble.facts}
-        located.outside += [
-            row for row in rows_of_numbers(grid, table.top, table.header_row) if row not in told
-        ]
-        if mapping.skip:
-            located.skipped.append(f"{where}, {table.place}: {source} says skip")
-        elif not source and _speaks_of_tables_below(table):
-            above = (*own, *read_across(grid, table.header_row, int(table.rows[0])))
-            continue
-        else:
-            if mapping.header_rows > 1:
-                rows = mapping.header_rows
-                table = cut_table(grid, table.top, table.header_row, rows, context.recognises)
-            preamble = Preamble(own, preamble.title)
-            located.tables.append(LocatedTable(table, key, mapping, source, preamble, sheet_facts))
-        sheet_facts = (*filter(holds_below, own), *sheet_facts)
-        above = ()
-    return located
+        rows = rows_of_numbers(table.grid, table.top, table.header_row)
+        self.found.outside += [row for row in rows if row not in told and row not in table.title_rows]
+
+    def _add(
+        self,
+        table: FoundTable,
+        key: str,
+        settled: Settled | None,
+        facts: tuple[Fact, ...],
+        title: str,
+        sheet_facts: Iterable[Fact],
+    ) -> None:
+        mapping = settled.mapping if settled else LayoutMapping()
+        if mapping.header_rows > 1 and not mapping.area:
+            rows = mapping.header_rows
+            table = cut_table(table.grid, table.top, table.header_row, rows, self._context.recognises)
+        facts = (*facts_of_cells(self._grid, table, mapping), *facts)
+        for part, read_as in parts_of(table, mapping, self._context):
+            self.found.tables.append(
+                LocatedTable(
+                    part,
+                    key,
+                    mapping,
+                    settled.source if settled else "",
+                    Preamble((*part.facts, *facts), title),
+                    tuple(sheet_facts),
+                    read_as,
+                    kept_under(key, mapping),
+                )
+            )
 
 
 def _speaks_of_tables_below(table: FoundTable) -> bool:
@@ -89,26 +160,3 @@ def _speaks_of_tables_below(table: FoundTable) -> bool:
         return False
     names = [canonical(header.text) for header in table.headers]
     return sum(name in NAMES for name in names) * 2 > len(names)
-
-
-def _mapping_for(key: str, given: GivenMappings, context: Context) -> tuple[LayoutMapping, str]:
-    """The mapping of a layout: from the given file (one without a key fits any layout), else as stored."""
-    for mapping in given.layouts:
-        if mapping.layout == key or (not mapping.layout and len(given.layouts) == 1):
-            return mapping, f"the mapping file {given.name}"
-    stored = [one for one in context.snapshot.all(TableMapping) if one.layout_key == key]
-    if not stored:
-        return LayoutMapping(), ""
-    latest = stored[-1]
-    layouts = read_mappings(latest.toml, f"mapping {latest.id}")
-    return layouts[0], f"{latest.id} revision {latest.revision}, recognised by its layout"
-
-
-def unused_layouts(given: GivenMappings, located: Sequence[LocatedTable]) -> list[str]:
-    """The layouts of the mapping file that no table has: it was made for another file, or the layout has changed."""
-    keys = {one.key for one in located}
-    return [
-        mapping.layout
-        for mapping in given.layouts
-        if mapping.layout and mapping.layout not in keys and not mapping.skip
-    ]

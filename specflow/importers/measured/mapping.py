@@ -24,7 +24,15 @@ from specflow.importers.measured.mapping_parts import (
 from specflow.importers.measured.result import Role
 from specflow.model.evidence import SpectrumKind
 
-__all__ = ["FORMAT", "ROLES", "ColumnMapping", "LayoutMapping", "PivotMapping", "read_mappings", "write_mapping"]
+__all__ = [
+    "FORMAT",
+    "ROLES",
+    "ColumnMapping",
+    "LayoutMapping",
+    "PivotMapping",
+    "read_mappings",
+    "write_mapping",
+]
 
 FORMAT = 1
 
@@ -80,7 +88,9 @@ def _layout(data: dict[str, Any], where: str) -> LayoutMapping:
 def _check_area(data: Mapping[str, Any], where: str) -> None:
     if "area" in data and read_area(data["area"]) is None:
         raise FileError(
-            f"area = {data['area']!r} is no area of a sheet", where=where, hint='write area = "K6:L10" or "A137:B"'
+            f"area = {data['area']!r} is no area of a sheet",
+            where=where,
+            hint='write area = "K6:L10" or "A137:B"',
         )
     if not data.get("area") and data.get("header_rows") == 0:
         raise FileError("header_rows = 0 without an area", where=where, hint='write area = "K6:L10", too')
@@ -95,18 +105,18 @@ def _long(data: dict[str, Any], where: str) -> LongMapping:
 
 def _matrix(data: dict[str, Any], where: str) -> MatrixMapping:
     where = f"{where}, matrix"
-    axes = {}
+    axes: list[AxisMapping] = []
     for name in ("rows", "columns"):
         part = _part_of(data, name, where)
         _check(AxisMapping, part, f"{where}, {name}")
         _demand(part, ("dimension", "start", "step"), f"{where}, {name}")
         if not part["step"]:
             raise FileError("a step of 0", where=f"{where}, {name}", hint="say how far the lines lie apart")
-        axes[name] = AxisMapping(**part | {"start": float(part["start"]), "step": float(part["step"])})
+        axes.append(AxisMapping(**part | {"start": float(part["start"]), "step": float(part["step"])}))
     _check(MatrixMapping, data, where, but=("rows", "columns"))
     _demand(data, ("parameter", "unit"), where)
     _check_spectrum(data, where)
-    return MatrixMapping(**data, **axes)
+    return MatrixMapping(rows=axes[0], columns=axes[1], **data)
 
 
 def _demand(data: Mapping[str, Any], names: tuple[str, ...], where: str) -> None:
@@ -188,7 +198,9 @@ def _check(kind: type[Any], data: Mapping[str, Any], where: str, but: tuple[str,
 
 
 def _is_one_of(value: object, kind: str) -> bool:
-    return isinstance(value, int) and not isinstance(value, bool) if "[int]" in kind else isinstance(value, str)
+    return (
+        isinstance(value, int) and not isinstance(value, bool) if "[int]" in kind else isinstance(value, str)
+    )
 
 
 def _refuse_unknown(data: Mapping[str, Any], known: tuple[str, ...], where: str) -> None:

@@ -1,4 +1,4 @@
-"""What a mapping may say of a table: of its columns, of its place, of its shape. Documents of words, nothing is read here.
+"""What a mapping may say of a table: of its columns, of its place, of its shape. Words only, nothing is read here.
 
 ``LayoutMapping`` is one ``[[table]]`` of a mapping file. Where a table stands is ``area``; how it lies there is
 ``turned``, ``header_rows``, ``[table.long]``, ``[table.matrix]`` and ``[table.pivot]``.
@@ -126,7 +126,8 @@ class MatrixMapping:
 class LayoutMapping:
     """The mapping of one layout.
 
-    ``area`` ("K6:L10", or "A137:B" to the end of the sheet) says where the table stands; its first ``header_rows`` rows
+    ``area`` ("K6:L10", or "A137:B" to the end of the sheet) says where the table stands, ``alone`` that nothing else of
+    its sheet is read; its first ``header_rows`` rows
     are headers (0: none, columns go by their letters). ``turned``: the headers stand in the first column.
     ``skip_rows`` are rows that are not read, ``stop_at`` the words at which the table has ended. ``when`` are facts
     that must be stated above the table for this mapping to hold.
@@ -136,6 +137,7 @@ class LayoutMapping:
     title: str = ""
     sheet: str = ""
     area: str = ""
+    alone: bool = False
     skip: bool = False
     turned: bool = False
     header_rows: int = 1
@@ -155,11 +157,6 @@ class LayoutMapping:
     def pivot(self) -> PivotMapping | None:
         """The pivot, where there is one."""
         return self.pivots[0] if self.pivots else None
-
-    @property
-    def is_of_a_sheet(self) -> bool:
-        """Whether it says that a sheet is not read, but for the areas that other entries name."""
-        return self.skip and bool(self.sheet) and not self.layout and not self.area
 
     def column(self, text: str, letter: str) -> ColumnMapping | None:
         """Return the entry about a column."""

@@ -13,8 +13,10 @@ from collections.abc import Callable, Iterator
 from dataclasses import dataclass, field
 
 import numpy as np
+from numpy.typing import NDArray
 
 from specflow.importers.measured.cells import ColumnCells, Flags, Rows, read_column
+from specflow.importers.measured.facts import Fact
 from specflow.importers.measured.header_cells import (
     HeaderCell,
     find_units_row,
@@ -23,8 +25,9 @@ from specflow.importers.measured.header_cells import (
     with_unit,
 )
 from specflow.importers.measured.header_text import header_key
+from specflow.importers.measured.result import Question
 from specflow.importers.measured.statements import is_reading, statement_rows, statement_text
-from specflow.importers.readers import Grid, address, is_blank, looks_numeric
+from specflow.importers.readers import Grid, is_blank, looks_numeric
 
 Recognises = Callable[[str], bool]
 
@@ -49,6 +52,22 @@ class Remark:
     states: bool = False
 
 
+@dataclass(frozen=True, slots=True)
+class Axis:
+    """A condition of each row that no column holds: ``start`` in row ``first``, a ``step`` more in each further row."""
+
+    dimension: str
+    unit: str
+    first: int
+    start: float
+    step: float
+    by: str
+
+    def at(self, rows: Rows) -> NDArray[np.float64]:
+        """The values in these rows."""
+        return self.start + self.step * (rows - self.first).astype(np.float64)
+
+
 @dataclass(frozen=True)
 class FoundTable:
     """A table on a sheet.
@@ -56,7 +75,11 @@ class FoundTable:
     ``top`` is the first row that may speak about it (title, key–value rows); ``rows`` int32 are the row numbers that
     hold data, among ``first_row`` up to, not including, ``stop_row``. ``headers`` are named columns in order;
     ``unnamed`` are columns with cells and no header. ``stepped_over`` are rows that are no data, ``between`` those of
-    them with data below.
+    them with data below. ``part`` says which part of a table it is where one was parted (by quantity, by a group of
+    columns), ``facts`` what is said of that part alone; ``axis`` is a condition that no column holds; ``doubts`` are
+    questions about where the table stands and how it lies, ``notes`` what is said about that. ``title_rows`` are rows
+    above that belong to the headers. ``words_above`` stand for the headers of a table that has none; one without any
+    words is not known again (``has_words``).
     """
 
     grid: Grid
@@ -70,6 +93,14 @@ class FoundTable:
     unnamed: tuple[int, ...] = ()
     stepped_over: tuple[Remark, ...] = ()
     between: tuple[Remark, ...] = ()
+    part: str = ""
+    facts: tuple[Fact, ...] = ()
+    axis: Axis | None = None
+    doubts: tuple[Question, ...] = ()
+    notes: tuple[str, ...] = ()
+    title_rows: tuple[int, ...] = ()
+    words_above: tuple[str, ...] = ()
+    has_words: bool = True
     _cells: dict[int, ColumnCells] = field(default_factory=dict, repr=False, compare=False)
 
     def cells(self, column: int) -> ColumnCells:
@@ -85,7 +116,8 @@ class FoundTable:
             return ""
         last = int(self.rows[-1]) if len(self.rows) else self.header_row
         columns = [header.column for header in self.headers]
-        return f"{address(self.header_row, min(columns))}:{address(last, max(columns))}"
+        corners = (self.header_row, min(columns)), (last, max(columns))
+        return ":".join(self.grid.address(*corner) for corner in corners)
 
 
 def find_tables(grid: Grid, recognises: Recognises) -> tuple[FoundTable, ...]:
@@ -107,7 +139,20 @@ def cut_table(grid: Grid, top: int, row: int, header_rows: int, recognises: Reco
     if units_row is not None:
         headers = tuple(with_unit(grid, header, units_row) for header in headers)
     first = row + header_rows if units_row is None else units_row + 1
-    return _Body(grid, headers, first, recognises).table(top, row, units_row)
+    return table_below(grid, headers, top, row, first, units_row, recognises)
+
+
+def table_below(
+    grid: Grid,
+    headers: tuple[HeaderCell, ...],
+    top: int,
+    header_row: int,
+    first: int,
+    units_row: int | None,
+    recognises: Recognises,
+) -> FoundTable:
+    """Return the table of these headers whose data begin in row ``first``."""
+    return _Body(grid, headers, first, recognises).table(top, header_row, units_row)
 
 
 def _header_row(grid: Grid, top: int, recognises: Recognises) -> int | None:
@@ -143,7 +188,7 @@ def _is_above_headers(grid: Grid, row: int, recognises: Recognises) -> bool:
 def _words(grid: Grid, row: int) -> dict[int, str]:
     """The cells of a row by column when all of them are words; empty when one is a number, a date or an error."""
     texts: dict[int, str] = {}
-    for column, value in enumerate(grid.rows[row - grid.first_row], start=grid.first_column):
+    for column, value in enumerate(grid.row(row), start=1):
         if isinstance(value, str):
             if value and not value.isspace():
                 if looks_numeric(value) or _ONE_READING.match(value.strip()):
@@ -159,7 +204,7 @@ def _words(grid: Grid, row: int) -> dict[int, str]:
 def _has_numbers_below(grid: Grid, row: int, texts: dict[int, str]) -> bool:
     seen = 0
     for below in range(row + 1, grid.last_row + 1):
-        cells = grid.rows[below - grid.first_row]
+        cells = grid.row(below)
         if below in grid.comment_rows or all(is_blank(value) for value in cells):
             continue
         filled = [column for column in texts if is_reading(grid.value(below, column))]
@@ -211,7 +256,7 @@ class _Body:
             unnamed,
             tuple(remark for remark in self._remarks if remark.row < stop),
             tuple(remark for remark in self._remarks if remark.row < last),
-            dict(self._cells) if stop == self._grid.last_row + 1 else {},
+            _cells=dict(self._cells) if stop == self._grid.last_row + 1 else {},
         )
 
     def _data_rows(self) -> tuple[Flags, int]:
@@ -284,7 +329,7 @@ class _Body:
         for below in range(row + 1, self._grid.last_row + 1):
             if self._is_header(below):
                 return True
-            filled = [value for value in self._grid.rows[below - self._grid.first_row] if not is_blank(value)]
+            filled = [value for value in self._grid.row(below) if not is_blank(value)]
             if filled and is_reading(filled[0]):
                 return False
         return False
@@ -321,6 +366,6 @@ class _Body:
 def rows_of_numbers(grid: Grid, top: int, stop: int) -> Iterator[int]:
     """Give the rows from ``top`` up to, not including, ``stop`` that hold several numbers."""
     for row in range(top, stop):
-        cells = grid.rows[row - grid.first_row]
+        cells = grid.row(row)
         if row not in grid.comment_rows and sum(map(is_reading, cells)) > 1:
             yield row

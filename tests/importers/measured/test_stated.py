@@ -141,11 +141,6 @@ def test_a_pivot_over_items(tmp_path: Path) -> None:
     assert "item" not in table.columns.conditions.text
 
 
-def test_a_table_with_the_quantity_in_the_rows_is_asked_about(tmp_path: Path) -> None:
-    rows = [["Parameter", "Value", "Unit", "f (GHz)"], ["Gain", 20, "dB", 27.5], ["NF", 1.5, "dB", 27.5]]
-    assert "a table with the quantity in the rows" in questions(one_table(book(tmp_path / "a.xlsx", rows)))
-
-
 def test_a_time_of_day_is_a_remark(tmp_path: Path) -> None:
     rows = [["Time", "f (GHz)", "Gain (dB)"], ["14:32:05", 27.5, 20]]
     assert taken(one_table(book(tmp_path / "a.xlsx", rows)))

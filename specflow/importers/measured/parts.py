@@ -1,0 +1,69 @@
+"""A table parted into tables that each read like a plain one: by the quantity in its rows, by its pivots, by groups."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import numpy as np
+
+from specflow.conditions import find_dimension
+from specflow.importers.measured.context import Context
+from specflow.importers.measured.header_text import read_header
+from specflow.importers.measured.long_form import find_long, long_parts
+from specflow.importers.measured.mapping_parts import LayoutMapping
+from specflow.importers.measured.place_facts import stated_here
+from specflow.importers.measured.placed import pivot_of
+from specflow.importers.measured.quantity_text import name_quantity
+from specflow.importers.measured.roles import role_of_words, uncertainty_of
+from specflow.importers.measured.tables import FoundTable
+
+Part = tuple[FoundTable, LayoutMapping]
+
+
+def parts_of(table: FoundTable, mapping: LayoutMapping, context: Context) -> list[Part]:
+    """Return the parts, each with the mapping that it is read by; a plain table is its own only part."""
+    read_as = replace(mapping, stated=stated_here(mapping))
+    if mapping.skip_rows:
+        table = _without_rows(table, mapping)
+    if mapping.matrix is not None:
+        return [(table, replace(read_as, pivots=(pivot_of(mapping.matrix),)))]
+    long = mapping.long or find_long(table, mapping, context)
+    if long is not None:
+        return long_parts(table, long, read_as, context)
+    if len(mapping.pivots) > 1:
+        return _pivot_parts(table, read_as, context)
+    return [(table, read_as)]
+
+
+def _without_rows(table: FoundTable, mapping: LayoutMapping) -> FoundTable:
+    left = ~np.isin(table.rows, list(mapping.skip_rows))
+    names = ", ".join(map(str, table.rows[~left].tolist()))
+    note = (f"not read, as the mapping says: rows {names}",) if names else ()
+    return replace(table, rows=table.rows[left], notes=(*table.notes, *note))
+
+
+def _pivot_parts(table: FoundTable, read_as: LayoutMapping, context: Context) -> list[Part]:
+    """One part for each pivot, with the columns that all share; one more where other columns hold values."""
+    of_pivots = [
+        [header for header in table.headers if pivot.is_about(header.text, header.letter)]
+        for pivot in read_as.pivots
+    ]
+    taken = {header.column for headers in of_pivots for header in headers}
+    others = tuple(header for header in table.headers if header.column not in taken)
+    values = {header.column for header in others if _is_value(header.text, header.unit, context)}
+    parts: list[Part] = []
+    if values:
+        parts.append((replace(table, headers=others), replace(read_as, pivots=())))
+    shared = [header for header in others if header.column not in values]
+    for pivot, own in zip(read_as.pivots, of_pivots, strict=True):
+        headers = tuple(sorted((*shared, *own), key=lambda header: header.column))
+        parts.append((replace(table, headers=headers, part=pivot.header), replace(read_as, pivots=(pivot,))))
+    return parts
+
+
+def _is_value(text: str, unit: str, context: Context) -> bool:
+    """Whether a header names a quantity, and no condition or role."""
+    parts = read_header(text)
+    if find_dimension(parts.name) or role_of_words(parts) or uncertainty_of(parts):
+        return False
+    return bool(name_quantity(parts, unit or parts.unit, context.dictionary, context.planes).candidates)
