@@ -27,10 +27,11 @@ _DECIBEL_STEP = Decimal("0.01")
 _DIGITS = 4
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Allotment:
     """What one block may have of one parameter, from ``low`` to ``high`` in ``unit``; ±inf where a side is open.
 
+    ``at`` are the same place by place (n,) where they depend on conditions; ``low`` and ``high`` are then the widest.
     ``is_shared``: it is a share of what a limit leaves; else it is what the block takes first: its figure and its
     tolerance, or (``is_kept``) the requirement that its block has already. ``least`` and ``most`` are the figures that
     the budget has now. ``words`` say where it comes from.
@@ -46,6 +47,19 @@ class Allotment:
     most: float
     words: str
     is_kept: bool = False
+    at: Ends | None = None
+
+    def ends(self, size: int) -> Ends:
+        """Return the two sides at each of ``size`` places."""
+        if self.at is not None:
+            return self.at
+        return np.full(size, self.low), np.full(size, self.high)
+
+    def by_place(self, low: Floats, high: Floats) -> Allotment:
+        """Return the allotment with sides place by place; one number a side where no place differs."""
+        if np.ptp(_finite_of(low)) == 0 and np.ptp(_finite_of(high)) == 0:
+            return replace(self, low=float(low[0]), high=float(high[0]), at=None)
+        return replace(self, low=float(low.min()), high=float(high.max()), at=(low, high))
 
     @property
     def key(self) -> BlockParameter:
@@ -56,6 +70,11 @@ class Allotment:
     def is_open(self) -> bool:
         """Whether it bounds nothing."""
         return math.isinf(self.low) and math.isinf(self.high)
+
+
+def _finite_of(side: Floats) -> Floats:
+    """Return a side with an open end as a number, so that places compare."""
+    return np.where(np.isfinite(side), side, np.sign(side) * 1e300)
 
 
 def key_of(read: ReadLine) -> BlockParameter:
@@ -72,10 +91,12 @@ def joined(allotments: Iterable[Allotment], where: str) -> list[Allotment]:
         known = found.get(one.key)
         found[one.key] = one if known is None else _narrower(known, one)
     for one in found.values():
-        if one.low > one.high:
+        low, high = one.ends(1)
+        place = int(np.argmax(low - high))
+        if low[place] > high[place]:
             raise InfeasibleError(
-                f"{one.block} {one.parameter} would have to be at least {one.low:.4g} and at most {one.high:.4g} "
-                f"{one.unit}: infeasible, and short by {one.low - one.high:.3g}",
+                f"{one.block} {one.parameter} would have to be at least {low[place]:.4g} and at most "
+                f"{high[place]:.4g} {one.unit}: infeasible, and short by {low[place] - high[place]:.3g}",
                 where=where,
                 hint="its figure differs more from one condition to another than the limits leave; relax one of them",
             )
@@ -83,25 +104,34 @@ def joined(allotments: Iterable[Allotment], where: str) -> list[Allotment]:
 
 
 def _narrower(first: Allotment, second: Allotment) -> Allotment:
-    governing = second if second.low > first.low or second.high < first.high else first
-    return replace(
-        governing,
-        low=max(first.low, second.low),
-        high=min(first.high, second.high),
+    size = max(len(one.at[0]) if one.at is not None else 1 for one in (first, second))
+    (low, high), (other_low, other_high) = first.ends(size), second.ends(size)
+    is_second = bool((other_low > low).any() or (other_high < high).any())
+    governing = replace(
+        second if is_second else first,
         is_shared=first.is_shared or second.is_shared,
         least=min(first.least, second.least),
         most=max(first.most, second.most),
     )
+    return governing.by_place(np.maximum(low, other_low), np.minimum(high, other_high))
 
 
 def rounded_safely(one: Allotment) -> Allotment:
     """Round both sides inwards, so that a limit of few digits never allows more: 0.01 dB, or four digits."""
-    return replace(one, low=_rounded(one.low, one.unit, up=True), high=_rounded(one.high, one.unit, up=False))
+    return _both_rounded(one, inwards=True)
 
 
 def rounded_widely(one: Allotment) -> Allotment:
     """Round both sides outwards: for what a block takes first, which the shares then have to leave room for."""
-    return replace(one, low=_rounded(one.low, one.unit, up=False), high=_rounded(one.high, one.unit, up=True))
+    return _both_rounded(one, inwards=False)
+
+
+def _both_rounded(one: Allotment, *, inwards: bool) -> Allotment:
+    low, high = one.ends(1)
+    return one.by_place(
+        np.array([_rounded(float(value), one.unit, up=inwards) for value in low]),
+        np.array([_rounded(float(value), one.unit, up=not inwards) for value in high]),
+    )
 
 
 def _rounded(value: float, unit: str, *, up: bool) -> float:
@@ -132,7 +162,7 @@ def taken_first(probe: Probe, numbers: Sequence[int]) -> tuple[list[Allotment], 
 
     A line with a tolerance takes its figure with it, from the least to the most of all places, on the sides that hurt.
     One without takes its figure as a limit where only one side hurts; where both do it is taken as exact, and said.
-    A figure that follows conditions by more than its tolerance gets no limit of one number.
+    A figure that follows conditions by more than its tolerance gets sides that follow them too.
     """
     matters = sides_that_matter(probe)
     found: list[Allotment] = []
@@ -142,28 +172,16 @@ def taken_first(probe: Probe, numbers: Sequence[int]) -> tuple[list[Allotment], 
         if read.role.figure == "source_k":
             continue
         low_hurts, high_hurts = matters[number]
-        tolerance = read.line.tolerance
-        width = 0.0 if tolerance is None else tolerance.minus + tolerance.plus
-        if float(np.ptp(read.values)) > width and (low_hurts or high_hurts):
-            notes.append(
-                f"{read.line.place} differs more between conditions than its tolerance: it is taken as it is at each, "
-                "and no single limit is proposed"
-            )
-            continue
-        if moves(read.line):
-            ends = bounds(read)
-            low = float(ends[0].min()) if low_hurts else -math.inf
-            high = float(ends[1].max()) if high_hurts else math.inf
-            found.append(_first(read, low, high, "figure and tolerance"))
-            continue
-        if low_hurts and high_hurts:
+        is_exact = not moves(read.line)
+        if is_exact and low_hurts and high_hurts:
             notes.append(
                 f"{read.line.place} states no tolerance and is taken as exact: nothing keeps it on either side"
             )
-        elif low_hurts:
-            found.append(_first(read, float(read.values.min()), math.inf, "figure"))
-        elif high_hurts:
-            found.append(_first(read, -math.inf, float(read.values.max()), "figure"))
+        elif low_hurts or high_hurts:
+            low, high = (np.broadcast_to(end, (probe.size,)) for end in bounds(read))
+            low = low if low_hurts else np.full(probe.size, -math.inf)
+            high = high if high_hurts else np.full(probe.size, math.inf)
+            found.append(_first(read, low, high, "figure" if is_exact else "figure and tolerance"))
     return found, notes
 
 
@@ -175,19 +193,16 @@ def kept_first(
     return {key: one for key, one in agreed.items() if key in keys}
 
 
-def _first(read: ReadLine, low: float, high: float, what: str) -> Allotment:
-    values = read.values
-    return Allotment(
-        read.line.block,
-        read.line.parameter,
-        read.line.unit,
-        low,
-        high,
-        False,
-        float(values.min()),
-        float(values.max()),
-        f"its {what} in the budget",
+def _first(read: ReadLine, low: Floats, high: Floats, what: str) -> Allotment:
+    """Return what a line takes first: one number a side, or sides place by place where it moves by more than that."""
+    line, values, tolerance = read.line, read.values, read.line.tolerance
+    width = 0.0 if tolerance is None else tolerance.minus + tolerance.plus
+    least, most = float(values.min()), float(values.max())
+    words = f"its {what} in the budget"
+    one = Allotment(
+        line.block, line.parameter, line.unit, float(low.min()), float(high.max()), False, least, most, words
     )
+    return one.by_place(low, high) if most - least > width else one
 
 
 def ends_of(
@@ -199,7 +214,7 @@ def ends_of(
     for read in probe.chain.lines:
         one = allotments.get(key_of(read))
         if one is not None:
-            ends.append((np.full(size, one.low), np.full(size, one.high)))
+            ends.append(one.ends(size))
         elif with_tolerances and moves(read.line):
             low, high = bounds(read)
             ends.append((np.broadcast_to(low, (size,)), np.broadcast_to(high, (size,))))

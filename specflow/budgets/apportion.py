@@ -67,6 +67,7 @@ def apportion(
     way: Way = "equal",
     fixed: Collection[str] = (),
     at_nominal: bool = False,
+    by_conditions: bool = False,
     agreed: Mapping[BlockParameter, Allotment] | None = None,
     values: Overrides | None = None,
 ) -> Apportionment:
@@ -77,7 +78,8 @@ def apportion(
 
     ``agreed`` are bounds that stand already for what is not shared; they are kept instead of figure and tolerance.
     ``at_nominal`` shares at nominal figures instead of the worst ends of what is taken first: the textbook's shares,
-    with which the system need not close. Raises InfeasibleError where what is taken first leaves nothing to share, with
+    with which the system need not close. ``by_conditions`` gives shares place by place instead of the one number that
+    holds at all of them. Raises InfeasibleError where what is taken first leaves nothing to share, with
     by how much; SpecflowError as ``evaluate_budget``.
     """
     probe = Probe.of(budget, snapshot, dictionary, values=values)
@@ -92,10 +94,12 @@ def apportion(
     ):
         law = contribution(target.output, budget)
         if law is None:
-            found, said = share_plainly(probe, target, numbers, _ends(probe, known, at_nominal), way)
+            found, said = share_plainly(
+                probe, target, numbers, _ends(probe, known, at_nominal), way, by_conditions=by_conditions
+            )
         else:
             found, said = _shared(probe, target, law, numbers, _ends(probe, known, at_nominal), way)
-        shares += found
+        shares += found if by_conditions else [_one_number(one) for one in found]
         binding += said
         known |= {one.key: one for one in map(rounded_safely, joined(shares, f"budget {budget.id}"))}
     closure = closure_test(probe, known)
@@ -276,15 +280,29 @@ def _scale(
 
 
 def _allotment(probe: Probe, number: int, value: Floats, at_most: bool, words: str) -> Allotment:
+    """Return the share of a line, place by place."""
     read = probe.chain.lines[number]
     is_upper = at_most == (read.role.form.rises > 0)
-    low = -math.inf if is_upper else float(np.max(value))
-    high = float(np.min(value)) if is_upper else math.inf
-    now = read.values
-    line = read.line
-    return Allotment(
-        line.block, line.parameter, line.unit, low, high, True, float(now.min()), float(now.max()), words
+    value, open_side = np.broadcast_to(value, (probe.size,)), np.full(probe.size, math.inf)
+    now, line = read.values, read.line
+    blank = Allotment(
+        line.block,
+        line.parameter,
+        line.unit,
+        -math.inf,
+        math.inf,
+        True,
+        float(now.min()),
+        float(now.max()),
+        words,
     )
+    return blank.by_place(-open_side, value) if is_upper else blank.by_place(value, open_side)
+
+
+def _one_number(one: Allotment) -> Allotment:
+    """Return a share as one number that holds at all places: the tightest."""
+    low, high = one.ends(1)
+    return one.by_place(low.max(keepdims=True), high.min(keepdims=True))
 
 
 def _binding(probe: Probe, number: int, value: Floats, target: Target, at_most: bool) -> str:

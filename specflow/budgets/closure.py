@@ -20,6 +20,7 @@ from specflow.budgets.spread import bounds, moves
 from specflow.errors import UnitError
 from specflow.limits import LimitContext, evaluate_limit
 from specflow.model.base import code_key
+from specflow.model.columns import Columns
 from specflow.model.requirement import Requirement
 from specflow.units import converter, parse_unit
 
@@ -160,12 +161,27 @@ def ends_of_children(probe: Probe, children: Sequence[Requirement]) -> tuple[lis
     return ends, notes
 
 
+def _terms_of(probe: Probe, row: int, child: Requirement) -> Columns:
+    """Return the conditions in which a limit is read; names that these do not have are those of the other side."""
+    own, system, points = probe.chain.own[row], probe.chain.required.columns, probe.chain.required.points
+    is_shared = points is not None and code_key(child.conditions or "") == code_key(points.conditions.id)
+    first, second = (system, own) if is_shared else (own, system)
+    taken = set(first.names)
+    return Columns(
+        own.size,
+        {**{name: one for name, one in second.numeric.items() if name not in taken}, **first.numeric},
+        {**{name: one for name, one in second.text.items() if name not in taken}, **first.text},
+        {**{name: unit for name, unit in second.units.items() if name not in taken}, **first.units},
+    )
+
+
 def child_ends(probe: Probe, row: int, child: Requirement, unit: str) -> Ends:
     """Return the bounds (n,) that a requirement sets on the block at one position, in ``unit``, ±inf where open.
 
+    A child with the conditions set of the budget speaks in its terms, one with a set of its own in the block's own.
     Where the limit is not known or asks for nothing it bounds nothing.
     """
-    columns = probe.chain.own[row]
+    columns = _terms_of(probe, row, child)
     context = LimitContext(columns, declared_values(probe.snapshot), columns.size)
     found = evaluate_limit(child.limit, context).spread(columns.size)
     parameter = probe.dictionary.get(child.quantity.parameter)

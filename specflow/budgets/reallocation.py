@@ -127,26 +127,23 @@ def _misses(
 
 
 def _widened(probe: Probe, line: KnownLine, own: Ends) -> Ends:
-    """Return bounds that take in what is known, one number for all places, rounded outwards."""
-    read, known = line.read, line.value[line.is_known]
-    low, high = min(float(own[0].min()), float(known.min())), max(float(own[1].max()), float(known.max()))
-    wide = rounded_widely(_allotment(read, low, high, ""))
-    return np.full(probe.size, wide.low), np.full(probe.size, wide.high)
+    """Return bounds that take in what is known, rounded outwards: one number for all places where they are one now."""
+    read = line.read
+    if any(bool(np.ptp(side[np.isfinite(side)]) > 0) for side in own if np.isfinite(side).any()):
+        low = np.where(line.is_known, np.minimum(own[0], line.value), own[0])
+        high = np.where(line.is_known, np.maximum(own[1], line.value), own[1])
+    else:
+        known = line.value[line.is_known]
+        low = np.full(probe.size, min(float(own[0].min()), float(known.min())))
+        high = np.full(probe.size, max(float(own[1].max()), float(known.max())))
+    return rounded_widely(_allotment(read, low, high, "")).ends(probe.size)
 
 
-def _allotment(read: ReadLine, low: float, high: float, words: str) -> Allotment:
+def _allotment(read: ReadLine, low: Floats, high: Floats, words: str) -> Allotment:
     line, values = read.line, read.values
-    return Allotment(
-        line.block,
-        line.parameter,
-        line.unit,
-        low,
-        high,
-        True,
-        float(values.min()),
-        float(values.max()),
-        words,
-    )
+    least, most = float(values.min()), float(values.max())
+    blank = Allotment(line.block, line.parameter, line.unit, -math.inf, math.inf, True, least, most, words)
+    return blank.by_place(low, high)
 
 
 def _miss(
@@ -244,16 +241,18 @@ def _part(probe: Probe, held: Sequence[Ends | None], reach: Sequence[Ends | None
 def _proposal(
     probe: Probe, before: Sequence[Ends | None], after: Sequence[Ends | None]
 ) -> tuple[Allotment, ...]:
-    """Return the bounds that changed, one for all places, rounded so that they still close."""
+    """Return the bounds that changed, rounded so that they still close: by place where they were, else one number."""
     found: list[Allotment] = []
     for read, was, now in zip(probe.chain.lines, before, after, strict=True):
         if was is None or now is None:
             continue
-        low, high = float(np.max(now[0])), float(np.min(now[1]))
+        is_one = all(bool((side == side[0]).all()) for side in was)
+        low, high = now
         wider = bool((now[0] < was[0] - _SMALL).any() or (now[1] > was[1] + _SMALL).any())
         narrower = bool((now[0] > was[0] + _SMALL).any() or (now[1] < was[1] - _SMALL).any())
-        if wider:
-            low, high = float(np.min(now[0])), float(np.max(now[1]))
+        if is_one:
+            ends = (low.min(), high.max()) if wider else (low.max(), high.min())
+            low, high = (np.full(probe.size, end) for end in ends)
         if not wider and not narrower:
             continue
         words = "relaxed to what is known of it" if wider else "tightened into what is known of it"
@@ -267,6 +266,5 @@ def _with(probe: Probe, ends: Sequence[Ends | None], proposal: Sequence[Allotmen
     found: list[Ends | None] = []
     for read, own in zip(probe.chain.lines, ends, strict=True):
         one = by_key.get(key_of(read))
-        size = probe.size
-        found.append(own if one is None else (np.full(size, one.low), np.full(size, one.high)))
+        found.append(own if one is None else one.ends(probe.size))
     return found

@@ -31,6 +31,10 @@ NominalOption = Annotated[
         "--nominal", help="Share at nominal gains and losses, not at the worst end of their tolerances."
     ),
 ]
+ByConditionsOption = Annotated[
+    bool,
+    typer.Option("--by-conditions", help="Limits by condition instead of one number that holds under all."),
+]
 ReserveOption = Annotated[
     list[str] | None,
     typer.Option(
@@ -84,6 +88,7 @@ def allocate(
     proportional: ProportionalOption = False,
     least_effort: EffortOption = False,
     nominal: NominalOption = False,
+    by_conditions: ByConditionsOption = False,
     reserve: ReserveOption = None,
     fix: FixOption = None,
     free_gain: FreeOption = None,
@@ -108,7 +113,9 @@ def allocate(
         _solve(budget, solve, project, as_json=as_json)
         return
     way = _way(equal=equal, proportional=proportional, least_effort=least_effort)
-    options = _options(way, reserve, fix, free_gain, weight, by_hand, because, nominal=nominal)
+    options = _options(
+        way, reserve, fix, free_gain, weight, by_hand, because, nominal=nominal, by_conditions=by_conditions
+    )
     with open_store(project, read_only=dry_run) as store:
         preview = preview_allocation(store, budget, options)
         if not as_json:
@@ -145,6 +152,7 @@ def _options(
     because: str,
     *,
     nominal: bool,
+    by_conditions: bool,
 ) -> AllocateOptions:
     from specflow.workflows.allocate import AllocateOptions
     from specflow.workflows.allocate_text import read_by_hand, read_reserve, read_weight
@@ -157,6 +165,7 @@ def _options(
         dict(read_weight(one) for one in weight or ()),
         [read_by_hand(one, because) for one in by_hand or ()],
         nominal,
+        by_conditions,
     )
 
 

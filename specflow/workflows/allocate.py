@@ -7,6 +7,8 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from typing import Literal
 
+import numpy as np
+
 from specflow.budgets.allotment import Allotment, BlockParameter, key_of
 from specflow.budgets.apportion import apportion
 from specflow.budgets.closure import Closure, child_ends, closure_test
@@ -16,7 +18,7 @@ from specflow.budgets.probe import Probe
 from specflow.budgets.serving import targets_of_lines
 from specflow.changes import diff, due_revision
 from specflow.errors import DocumentError
-from specflow.limits import limit_difference, parse_limit
+from specflow.limits import LimitContext, evaluate_limit, limit_difference, parse_limit
 from specflow.model.base import Document, code_key
 from specflow.model.block import Block
 from specflow.model.budget import Allocation, Budget, Reserve
@@ -27,6 +29,7 @@ from specflow.model.requirement import Requirement, Source
 from specflow.model.snapshot import Snapshot
 from specflow.parameters import Dictionary
 from specflow.store import ProjectStore
+from specflow.workflows.allocated_limit import limit_text_of
 from specflow.workflows.evaluate_project import project_dictionary
 from specflow.workflows.show_budget import budget_named
 
@@ -47,7 +50,8 @@ class ByHand:
 class AllocateOptions:
     """How to share. ``reserves`` are kept back first and stored in the budget with their holders.
 
-    ``at_nominal`` shares at nominal gains and losses, not at the worst end of their tolerances.
+    ``at_nominal`` shares at nominal gains and losses, not at the worst end of their tolerances. ``by_conditions`` gives
+    limits that depend on conditions instead of one number that holds under all.
     """
 
     way: Way = "proportional"
@@ -57,6 +61,7 @@ class AllocateOptions:
     weights: Mapping[str, float] = field(default_factory=dict)
     by_hand: Sequence[ByHand] = ()
     at_nominal: bool = False
+    by_conditions: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -173,11 +178,9 @@ def _agreed(
         child = _known_child(probe.snapshot, probe.budget, blank, serves.get(key, ()))
         if child is None or code_key(child.id) in own:
             continue
-        ends = child_ends(probe, read.row, child, line.unit)
-        low, high = float(ends[0].max()), float(ends[1].min())
-        if low <= high:
-            words = f"{child.id} as it stands"
-            found[key] = replace(blank, low=low, high=high, words=words, is_kept=True)
+        low, high = child_ends(probe, read.row, child, line.unit)
+        if (low <= high).all():
+            found[key] = replace(blank, words=f"{child.id} as it stands", is_kept=True).by_place(low, high)
     return found
 
 
@@ -194,6 +197,12 @@ def _allotted(
                 "the least effort is found at the worst ends of the tolerances",
                 where=f"budget {budget.id}",
                 hint="take equal or proportional shares at nominal figures",
+            )
+        if options.by_conditions:
+            raise DocumentError(
+                "the least effort gives each block one number for all conditions",
+                where=f"budget {budget.id}",
+                hint="take equal or proportional shares by conditions",
             )
         found = least_effort(
             budget,
@@ -219,6 +228,7 @@ def _allotted(
         way=options.way,
         fixed=options.fixed,
         at_nominal=options.at_nominal,
+        by_conditions=options.by_conditions,
         agreed=agreed,
     )
     where = "nominal figures" if options.at_nominal else "the worst ends of their tolerances"
@@ -276,7 +286,7 @@ def _proposal(one: Allotment, parents: tuple[str, ...], probe: Probe, hand: ByHa
     parameter = probe.dictionary.get(one.parameter)
     known = _known_child(snapshot, budget, one, parents)
     kept = known.limit if one.is_kept and known is not None else None
-    proposed = kept or parse_limit(limit_text_of(one), parameter=parameter)
+    proposed = kept or _limit_of(one, probe)
     given = proposed if hand is None else parse_limit(hand.limit, parameter=parameter, unit_hint=one.unit)
     difference = limit_difference(proposed, given) if hand is not None else ""
     reason = hand.reason if hand is not None and difference else ""
@@ -289,12 +299,22 @@ def _proposal(one: Allotment, parents: tuple[str, ...], probe: Probe, hand: ByHa
     return Proposal(one, child, parents, proposed, given, known.limit if known else None, reason, difference)
 
 
-def limit_text_of(one: Allotment) -> str:
-    """Return an allotment as the text of a limit."""
-    low, high = f"{one.low:.10g} {one.unit}", f"{one.high:.10g} {one.unit}"
-    if math.isinf(one.low):
-        return f"<= {high}"
-    return f">= {low}" if math.isinf(one.high) else f"{low}..{high}"
+def _limit_of(one: Allotment, probe: Probe) -> Limit:
+    """Return an allotment as a limit. DocumentError where the limit would say something else than the allotment."""
+    limit = parse_limit(
+        limit_text_of(one, probe.chain.required), parameter=probe.dictionary.get(one.parameter)
+    )
+    if one.at is not None:
+        columns = probe.chain.required.columns
+        found = evaluate_limit(limit, LimitContext(columns, {}, columns.size)).spread(columns.size)
+        for side, told in zip(one.at, (found.lower, found.upper), strict=True):
+            known = np.isfinite(side)
+            if known.any() and (told is None or not np.allclose(told[known], side[known], rtol=0, atol=1e-9)):
+                raise DocumentError(
+                    f"the limit of {one.block} {one.parameter} by conditions cannot be written: {limit.text}",
+                    hint="share without --by-conditions",
+                )
+    return limit
 
 
 def _as_given(proposal: Proposal, probe: Probe) -> Allotment:
@@ -308,8 +328,7 @@ def _as_given(proposal: Proposal, probe: Probe) -> Allotment:
         if (code_key(read.line.block), code_key(read.line.parameter)) == one.key
     )
     child = proposal.child.model_copy(update={"limit": proposal.given})
-    low, high = child_ends(probe, row, child, one.unit)
-    return replace(one, low=float(low.min()), high=float(high.max()))
+    return one.by_place(*child_ends(probe, row, child, one.unit))
 
 
 def _known_child(
@@ -351,7 +370,7 @@ def _new_child(one: Allotment, parents: Sequence[str], probe: Probe, title: str)
         owner=block.owner,
         block=block.id,
         quantity=QuantityIdentity(parameter=one.parameter),
-        limit=parse_limit(limit_text_of(one), parameter=probe.dictionary.get(one.parameter)),
+        limit=_limit_of(one, probe),
         conditions=points.conditions.id if points is not None else None,
         rationale=one.words,
     )
@@ -389,7 +408,7 @@ def _link(
         None,
     )
     fresh = stored or Allocation(id=f"{parent.id} > {one.child.id}", parent=parent.id, child=one.child.id)
-    text = "" if one.allotment.is_kept else limit_text_of(one.allotment)
+    text = "" if one.allotment.is_kept else one.proposed.text
     fields = {
         "parent_revision": parent.revision,
         "budget": budget.id,

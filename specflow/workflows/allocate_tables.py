@@ -9,7 +9,7 @@ from typing import Any
 from specflow.budgets.closure import Closure
 from specflow.model.report import CellTone, ReportCell, ReportColumn, ReportRow, ReportTable
 from specflow.reports.figures import margin, rounded, text
-from specflow.workflows.allocate import AllocatePreview, Proposal, limit_text_of
+from specflow.workflows.allocate import AllocatePreview, Proposal
 
 
 def proposals_table(preview: AllocatePreview) -> ReportTable:
@@ -120,7 +120,8 @@ def preview_as_json(preview: AllocatePreview) -> dict[str, Any]:
                 "unit": one.allotment.unit,
                 "low": _finite(one.allotment.low),
                 "high": _finite(one.allotment.high),
-                "proposed": limit_text_of(one.allotment),
+                "proposed": one.proposed.text,
+                "depends_on_conditions": one.allotment.at is not None,
                 "limit": one.given.text,
                 "before": one.before.text if one.before is not None else None,
                 "is_shared": one.allotment.is_shared,

@@ -13,6 +13,7 @@ from specflow.model.report import CellTone, ReportCell, ReportRow, ReportTable
 from specflow.reports.figures import margin, number, text
 from specflow.units import format_unit, parse_unit, tolerance_unit
 from specflow.workflows.allocate_tables import closure_as_json, closure_table, plain_row, table
+from specflow.workflows.allocated_limit import limit_text_of
 from specflow.workflows.as_known import KnownBudget
 
 
@@ -128,19 +129,13 @@ def _proposal(found: KnownBudget) -> ReportTable:
             f"{one.block} {one.parameter}",
             one.block,
             one.parameter,
-            _window(one.low, one.high, one.unit),
+            limit_text_of(one, found.known.result.required),
             one.words,
         )
         for one in found.reallocation.proposal
     ]
     intro = found.reallocation.closure.sentence
     return table("proposal", "Proposed re-allocation", intro, ("Block", "Parameter", "Limit", "Why"), rows)
-
-
-def _window(low: float, high: float, unit: str) -> str:
-    if math.isinf(low):
-        return f"<= {high:.6g} {unit}"
-    return f">= {low:.6g} {unit}" if math.isinf(high) else f"{low:.6g}..{high:.6g} {unit}"
 
 
 def known_as_json(found: KnownBudget) -> dict[str, Any]:
@@ -208,7 +203,7 @@ def known_as_json(found: KnownBudget) -> dict[str, Any]:
         ],
         "still_closes": closure_as_json(found.reallocation.with_misses),
         "proposal": [
-            {"block": one.block, "parameter": one.parameter, "limit": _window(one.low, one.high, one.unit)}
+            {"block": one.block, "parameter": one.parameter, "limit": limit_text_of(one, known.result.required)}
             for one in found.reallocation.proposal
         ],
         "sentence": found.reallocation.sentence,

@@ -5,21 +5,27 @@ from __future__ import annotations
 from datetime import date
 from pathlib import Path
 
+import numpy as np
 import pytest
 
 from specflow.errors import ConflictError, DocumentError
+from specflow.limits import parse_limit
 from specflow.model.budget import Allocation, Budget, Reserve
+from specflow.model.limit import Limit
 from specflow.model.requirement import Requirement
 from specflow.store import ProjectStore
 from specflow.workflows.allocate import (
     AllocateOptions,
+    AllocatePreview,
     ByHand,
     accept_allocation,
     preview_allocation,
 )
-from specflow.workflows.evaluate_project import evaluate_project
+from specflow.workflows.as_known import children_of_budget
+from specflow.workflows.budget_standing import budget_standings
+from specflow.workflows.evaluate_project import evaluate_project, project_dictionary
 from specflow.workflows.solve_budget import solve_budget
-from specflow.workflows.try_change import keep_trial, try_changes
+from specflow.workflows.try_change import keep_trial, try_changes, with_documents
 from tests.budgets import receiver
 from tests.builders import a_requirement, between, editing
 
@@ -141,14 +147,68 @@ def test_a_requirement_that_stands_is_kept_as_what_its_block_takes_first(tmp_pat
     assert any("LNA gain 16 dB" in limit.stands for limit in preview.closure.limits)
 
 
-def test_a_figure_that_follows_conditions_gets_no_limit_of_one_number(tmp_path: Path) -> None:
+def test_a_figure_that_follows_conditions_gets_a_limit_that_follows_them(tmp_path: Path) -> None:
     with receiver.make_store(tmp_path / "rx.specflow") as store:
         text = "RX FIL insertion_loss = table temperature_ambient: -30 °C 0.5; 55 °C 3 dB linear"
         keep_trial(store, try_changes(store, [text], AS_OF), by="A. Invented", reason="measured")
         preview = preview_allocation(store, "RX", AllocateOptions("equal"))
-    assert "FIL-INSERTION-LOSS" not in {one.child.id for one in preview.proposals}
-    assert any("differs more between conditions than its tolerance" in note for note in preview.notes)
-    assert preview.closure.closes is True
+        limit = next(one.given for one in preview.proposals if one.child.id == "FIL-INSERTION-LOSS")
+        # on the line from 0.5 dB at -30 °C to 3 dB at 55 °C, and ± 0.3 dB
+        assert limit.text == "by temperature_ambient[°C] (-30: <= 0.8 dB; 20: <= 2.28 dB; 55: <= 3.3 dB)"
+        assert preview.closure.closes is True
+        accept_allocation(store, preview, by="A. Invented")
+        snapshot = store.load()
+        standing = budget_standings(snapshot, project_dictionary(snapshot))["rx"]
+        assert standing.closes is True, standing.sentence
+        cold = preview_allocation(store, "RX", AllocateOptions("equal"))
+        assert not cold.changes and not cold.outdated
+
+
+def test_a_child_is_held_to_its_bound_at_each_condition(tmp_path: Path) -> None:
+    """A table of limits that is loose in the cold only, where the system has room: closure holds point by point."""
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        accept_allocation(store, preview_allocation(store, "RX", AllocateOptions("equal")), by="A. Invented")
+        snapshot = store.load()
+        children = children_of_budget(snapshot, snapshot.find(Budget, "RX"))  # type: ignore[arg-type]
+        noise = next(one for one in children if one.id == "LNA-NOISE-FIGURE")
+        system = snapshot.find(Requirement, "SYS-NF")
+        assert system is not None
+        cold = parse_limit("by temperature_ambient[°C] (-30: <= 3.5 dB; 20: <= 3 dB; 55: <= 3 dB)")
+        own = parse_limit(
+            f"by temperature_ambient[°C] (-30: <= 1.6 dB; 20: {noise.limit.text}; 55: {noise.limit.text})"
+        )
+        for text, closes in ((cold, True), (system.limit, False)):
+            documents = [
+                noise.model_copy(update={"limit": own}),
+                system.model_copy(update={"limit": text}),
+            ]
+            changed = with_documents(snapshot, documents)
+            standing = budget_standings(changed, project_dictionary(changed))["rx"]
+            assert standing.closes is closes, standing.sentence
+
+
+def test_shares_by_conditions_follow_the_drift_of_a_block(tmp_path: Path) -> None:
+    """A gain that falls with heat has to be so much only where it is: the one number asks for it everywhere."""
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        text = "RX LNA noise_figure = 1.2 dB + 0.01 dB/K of temperature_ambient from 20 °C"
+        keep_trial(store, try_changes(store, [text], AS_OF), by="A. Invented", reason="measured")
+        one = preview_allocation(store, "RX", AllocateOptions("proportional"))
+        each = preview_allocation(store, "RX", AllocateOptions("proportional", by_conditions=True))
+        limits = {name: limit.text for name, limit in _limits(each).items()}
+        assert limits["LNA-NOISE-FIGURE"].startswith("by temperature_ambient[°C] (-30: <= ")
+        assert each.closure.closes is True
+        left = [
+            float(np.nanmax(found.margin)) for found in each.closure.limits if found.requirement == "SYS-NF"
+        ]
+        assert 0 <= left[0] < 0.02  # nothing left but rounding, at every condition
+        assert _limits(one)["LNA-NOISE-FIGURE"].text.startswith("<= ")
+        accept_allocation(store, each, by="A. Invented")
+        snapshot = store.load()
+        assert budget_standings(snapshot, project_dictionary(snapshot))["rx"].closes is True
+
+
+def _limits(preview: AllocatePreview) -> dict[str, Limit]:
+    return {one.child.id: one.given for one in preview.proposals}
 
 
 def test_a_changed_line_limit_or_child_marks_what_no_longer_follows(tmp_path: Path) -> None:
