@@ -19,8 +19,12 @@ _MEASURE = re.compile(
     re.IGNORECASE,
 )
 _DEGREES = re.compile(r"(?:[Dd]eg(?:ree)?s?\.? ?|DEG ?|° )([CFK])\b")
-_PER = re.compile(r" ?\b[Pp]er |(?<=[A-Za-z])Per(?=[A-Z])")  # "dBm per MHz"; dBuVPerMeter, as exports name enumerations
-_SPLIT_DECIBEL = re.compile(r"^(d[Bb]) (?=[µu]?[mVAW](?:\b|/))")  # "dB uV": what follows cannot multiply decibels
+_PER = re.compile(
+    r" ?\b[Pp]er |(?<=[A-Za-z])Per(?=[A-Z])"
+)  # "dBm per MHz"; dBuVPerMeter, as exports name enumerations
+_SPLIT_DECIBEL = re.compile(
+    r"^(d[Bb]) (?=[µu]?[mVAW](?:\b|/))"
+)  # "dB uV": what follows cannot multiply decibels
 _DIRECT = re.compile(r"(?<=[VA]) ?(?:DC|dc)$")  # a direct voltage is a voltage
 _IN_BANDWIDTH = re.compile(r" in (?:an? )?(?=\d)")
 _DECIMAL_COMMA = re.compile(r"(?<=\d),(?=\d{1,2}(?!\d))")

@@ -44,7 +44,8 @@ _BLANKS = {
     "not applicable": "n/a | na | n.a. | n.a | not applicable | n/ap | #n/a | #n/a n/a",
     "not measured": "n.m. | nm | n/m | n.m | not measured | not tested | n.t. | n/t | skipped",
     "not available": "not available | n/av | missing | no data",
-    "overload of the instrument": "ol | o.l. | 0l | ovl | ovld | overload | overflow | over range | over",
+    "overload of the instrument": "ol | o.l. | o/l | 0l | +ol | -ol | ovl | ovld | ovf | ovr | overload | overflow "
+    "| over range | overrange | over | out of range | oor | clipped | saturated",
     "invalid at the instrument": "uncal | invalid | unlock | unlocked | under range | underflow | err | error",
     "not a number": "nan | #num! | inf | -inf | +inf | infinity | -infinity | 1.#inf | -1.#ind | 1.#qnan",
     "to be determined": "tbd | tba | tbc | ffs | tbs",

@@ -51,7 +51,9 @@ LINEAR = (
     LinearRow("h", "s", Fraction(3600), spellings=("hr", "hrs", "hour", "hours")),
     LinearRow("day", "s", Fraction(86400), spellings=("days",)),
     LinearRow("year", "s", Fraction(31557600), spellings=("yr", "years")),  # the Julian year of 365.25 days
-    LinearRow("m", "m", prefixes="pnµmcdk", spellings=("metre", "meter", "metres", "meters", "Meter", "Metre")),
+    LinearRow(
+        "m", "m", prefixes="pnµmcdk", spellings=("metre", "meter", "metres", "meters", "Meter", "Metre")
+    ),
     LinearRow("in", "m", Fraction("0.0254"), spellings=("inch", "inches")),
     LinearRow("mil", "m", Fraction("0.0000254"), spellings=("mils", "thou")),
     LinearRow("ft", "m", Fraction("0.3048"), spellings=("foot", "feet")),

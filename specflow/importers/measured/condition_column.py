@@ -12,6 +12,7 @@ from specflow.conditions import (
     known_dimension,
     unlocated_temperature_hint,
 )
+from specflow.importers.measured.cell_units import slip_of
 from specflow.importers.measured.column import ColumnMeaning, Heading
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.header_text import HeaderText, known_unit, read_header
@@ -20,7 +21,7 @@ from specflow.importers.measured.result import Role
 from specflow.importers.measured.stated import Stated
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.measured.unit_source import FoundUnit
-from specflow.units import compatible, parse_unit
+from specflow.units import compatible, format_unit, parse_unit
 
 _LEVELS = ("power_level", "input_level")
 
@@ -46,6 +47,19 @@ def condition_of(heading: Heading, dimension: KnownDimension, unit: FoundUnit, r
         by_row=unit.by_row,
         by_cell=unit.by_cell,
     )
+
+
+def axis_unit(dimension: KnownDimension, unit: FoundUnit, stated: Stated) -> FoundUnit:
+    """The unit of a column; where it has none that of the axis, as stated above the table, if it can be."""
+    said = stated.text("axis_unit")
+    if unit.unit or unit.problem or not said or not dimension.unit:
+        return unit
+    spelled = known_unit(said)
+    if spelled is None or not compatible(spelled, parse_unit(dimension.unit)):
+        return unit
+    slip = slip_of(format_unit(spelled))
+    where = stated.by("axis_unit")
+    return FoundUnit(problem=f"{slip}; {where}") if slip else FoundUnit(format_unit(spelled), where)
 
 
 def mapped_condition(heading: Heading, unit: FoundUnit) -> ColumnMeaning:

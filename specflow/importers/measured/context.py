@@ -6,6 +6,7 @@ from dataclasses import dataclass, field
 from functools import cached_property
 
 from specflow.conditions import find_dimension, is_unlocated_temperature
+from specflow.importers.measured.formats import is_formatted_data
 from specflow.importers.measured.header_text import read_header
 from specflow.importers.measured.mapping import read_mappings
 from specflow.importers.measured.mapping_parts import LayoutMapping
@@ -62,5 +63,7 @@ class Context:
         if parts.unit or parts.odd_unit or role_of_words(parts) or uncertainty_of(parts):
             return True
         if find_dimension(parts.name) or is_unlocated_temperature(parts.name):
+            return True
+        if is_formatted_data(parts.name):
             return True
         return bool(name_quantity(parts, "", self.dictionary, ()).candidates)

@@ -9,7 +9,8 @@ _LAYOUTS = ("%Y-%m-%d", "%Y/%m/%d", "%Y%m%d", "%d %B %Y", "%d %b %Y", "%d-%b-%Y"
             "%b %d %Y", "%B %d %Y", "%Y.%m.%d")  # fmt: skip
 
 _TIME = re.compile(
-    r"[ T,]+\d{1,2}:\d{2}(?::\d{2}(?:\.\d+)?)?(?: ?[AaPp]\.?[Mm]\.?)?(?: ?(?:Z|UTC|GMT|[+\-]\d{2}:?\d{2}))?(?=$| \d{4}$)"
+    r"[ T,]+\d{1,2}:\d{2}(?::\d{2}(?:\.\d+)?)?(?: ?[AaPp]\.?[Mm]\.?)?(?: ?(?:Z|UTC|GMT|[+\-]\d{2}:?\d{2}))?"
+    r"(?=$| \d{4}$)"
 )
 _WEEKDAY = re.compile(r"^(?:Mon|Tue|Wed|Thu|Fri|Sat|Sun)[a-z]*[ ,.]+")
 _NUMBERS = re.compile(r"(?P<a>\d{1,2}|\d{4})(?P<sign>[/.\-])(?P<b>\d{1,2})(?P=sign)(?P<c>\d{4}|\d{2})")

@@ -65,6 +65,7 @@ def read_table(located: LocatedTable, context: Context, person: Mapping[str, str
     work.questions += [doubt for name, doubt in stated.doubts.items() if name not in given]
     _ask_about_columns(work)
     _note_idle_entries(work)
+    work.notes += [f"column {one.letter} was {one.reason}" for one in work.of(Role.NOT_READ) if one.of_file]
     work.rows, notes = select_rows(table, work.meanings, mapping, work.rejects)
     work.notes += notes
     title = mapping.title or located.preamble.title

@@ -15,6 +15,7 @@ from specflow.conditions import find_dimension, known_dimension
 from specflow.importers.measured.cell_units import is_unit_column
 from specflow.importers.measured.column import ColumnMeaning, Heading
 from specflow.importers.measured.condition_column import (
+    axis_unit,
     condition_of,
     is_condition,
     is_open,
@@ -24,19 +25,22 @@ from specflow.importers.measured.condition_column import (
 )
 from specflow.importers.measured.constants import ConstantColumn, read_constants
 from specflow.importers.measured.context import Context
+from specflow.importers.measured.formats import Format, format_of, header_of, is_plain_head
 from specflow.importers.measured.header_cells import HeaderCell
 from specflow.importers.measured.header_text import header_key, read_header
 from specflow.importers.measured.mapping import ColumnMapping, LayoutMapping
 from specflow.importers.measured.pairing import of_their_values, uncertainty_column, without_doubles
+from specflow.importers.measured.placeholders import only_mark
 from specflow.importers.measured.quantity_text import bare_word, name_quantity
 from specflow.importers.measured.result import Role
 from specflow.importers.measured.roles import UncertaintyWords, role_of_words, uncertainty_of
 from specflow.importers.measured.scaling import scaled_unit, with_scale
 from specflow.importers.measured.stated import PERSON, Stated
 from specflow.importers.measured.tables import FoundTable
-from specflow.importers.measured.unit_source import find_unit
+from specflow.importers.measured.unit_source import FoundUnit, find_unit
 from specflow.importers.measured.value_column import mapped_value, named_value
 from specflow.importers.readers import column_letter
+from specflow.units import compatible, parse_unit
 
 _READING_AS_TEXT = re.compile(r"^\s*[<>≤≥]\s*[+\-−]?[0-9]")
 _MOST_TEXTS = 50
@@ -71,8 +75,15 @@ class _Reader:
         self._seen = Counter(header_key(header.text) for header in table.headers)
 
     def read(self, header: HeaderCell) -> ColumnMeaning:
-        """Return what a column is; a factor in its header is applied, or asked about."""
-        return with_scale(self._read(header), self._entry(header))
+        """Return what a column is; a factor in its header is applied, or asked about; one never swept is not read."""
+        meaning = with_scale(self._read(header), self._entry(header))
+        if meaning.role not in (Role.VALUE, Role.UNRESOLVED) or self._mapping.keep_placeholders:
+            return meaning
+        mark = only_mark(self._table, header.column)
+        if not mark:
+            return meaning
+        reason = f"never swept: {mark} (keep_placeholders = true in a mapping reads it)"
+        return ColumnMeaning(header, meaning.parts, Role.NOT_READ, reason, of_file=True)
 
     def _entry(self, header: HeaderCell) -> ColumnMapping:
         mapped = self._mapping.column(header.text, column_letter(header.column))
@@ -122,7 +133,8 @@ class _Reader:
         role = Role(hints.role) if hints.role else Role.VALUE if hints.parameter else Role.CONDITION
         unit = heading.unit()
         if role is Role.VALUE and hints.parameter:
-            return mapped_value(heading, hints.parameter, unit, self._context, self._stated)
+            meaning = mapped_value(heading, hints.parameter, unit, self._context, self._stated)
+            return meaning if heading.said_by == PERSON else self._of_format(meaning)
         if role is Role.VALUE:
             named = name_quantity(heading.parts, unit.unit, self._context.dictionary, self._context.planes)
             if not named.candidates:
@@ -151,17 +163,59 @@ class _Reader:
         if dimension is not None and (
             not quantity.candidates or is_condition(dimension, quantity, self._context)
         ):
-            return condition_of(heading, dimension, unit, f"the header names {dimension.title}")
+            return condition_of(
+                heading,
+                dimension,
+                axis_unit(dimension, unit, self._stated),
+                f"the header names {dimension.title}",
+            )
         if dimension is not None and is_open(dimension, quantity, self._context, self._table):
             title = quantity.candidates[0].parameter.title
             column = f"column {heading.letter}"
             remedy = f'--state "{column}=condition" or "{column}=value", or its role in a mapping'
             return heading.ask(f"may be the condition {dimension.title} or a value of {title}", remedy)
         if quantity.candidates:
-            return named_value(heading, quantity, unit, self._context, self._stated)
+            return self._of_format(named_value(heading, quantity, unit, self._context, self._stated))
         if is_temperature(parts, unit):
             return temperature(heading, unit, self._stated)
+        if is_plain_head(parts.name) and self._stated.text("format"):
+            return self._formatted(heading, unit)
         return self._unknown(heading)
+
+    def _of_format(self, meaning: ColumnMeaning) -> ColumnMeaning:
+        """Doubt a value that the format stated above the table contradicts: a phase is no value of a gain."""
+        stated = format_of(self._stated.text("format"))
+        if stated is None or meaning.role is not Role.VALUE:
+            return meaning
+        if compatible(parse_unit(stated.unit), parse_unit(meaning.unit)):
+            return meaning
+        return self._contradicted(meaning, stated)
+
+    def _contradicted(self, meaning: ColumnMeaning, stated: Format) -> ColumnMeaning:
+        what = f"{meaning.words()}, but the file says {stated.words} ({self._stated.by('format')})"
+        remedy = (
+            f'--state "column {meaning.letter}=PARAMETER in UNIT" if the file is wrong, or "...=not read"'
+        )
+        return replace(meaning, role=Role.UNRESOLVED, question=meaning.asks(what, remedy))
+
+    def _formatted(self, heading: Heading, unit: FoundUnit) -> ColumnMeaning:
+        """A column "Formatted Data": what it is stands above the table, as in "Meas Type: S21", "Format: Log Mag"."""
+        measured, written = self._stated.text("measured"), self._stated.text("format")
+        parts = read_header(header_of(measured, written) or "?")
+        stated = format_of(written)
+        named = name_quantity(parts, "", self._context.dictionary, self._context.planes)
+        if stated is None or not named.candidates:
+            of = f"{measured} as {written}" if measured else f"something as {written}"
+            return heading.ask_parameter(
+                f"holds {of}, by what stands above; of which parameter it does not say"
+            )
+        if unit.unit and not compatible(parse_unit(unit.unit), parse_unit(stated.unit)):
+            return heading.ask_unit(f"{unit.source} says {unit.unit}, the format {written}", stated.unit)
+        where = f"{measured} as {written}, {self._stated.by('format')}"
+        found = unit if unit.unit else FoundUnit(stated.unit, where)
+        meaning = named_value(heading, named, found, self._context, self._stated)
+        reason = f"{where}; {meaning.reason}" if meaning.question is None else meaning.reason
+        return replace(meaning, reason=reason, of_file=True)
 
     def _unit_column(self, heading: Heading) -> ColumnMeaning:
         """A column of units gives them to another column; where that is called "Value", the quantity is in the rows."""

@@ -9,8 +9,11 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
+from specflow.errors import UnitError
 from specflow.importers.measured.cells import Rows
 from specflow.importers.measured.rejects import Rejects
+from specflow.importers.measured.tables import FoundTable
+from specflow.units import Blank, parse_reading
 
 NO_NUMBER = 9.9e37
 _NO_NUMBER_REASON = "a placeholder of the instrument, no number"
@@ -19,6 +22,7 @@ _REASON = (
     "(keep_placeholders = true in a mapping reads it)"
 )
 _NEAR = 0.5
+_NOTHING = ("nothing written", "not measured", "not available", "not applicable")
 _WHOLE = (2147483648, 2147483647)
 _SCALES = (0, 3, 4, 5, 6, 7)
 _DECIMALS = (2, 3, 4, 6)
@@ -48,6 +52,33 @@ def reject_placeholders(low: NDArray[np.float64], column: int, rows: Rows, rejec
         _reject(low, size >= NO_NUMBER, column, rows, rejects, _NO_NUMBER_REASON)
     if not rejects.keep_placeholders:
         _reject(low, _alone(low), column, rows, rejects, _REASON)
+
+
+def only_mark(table: FoundTable, column: int) -> str:
+    """Say that a column holds one placeholder and nothing else: "-2147.48 in all 401 rows"; "" for any other column.
+
+    Words for nothing count ("---"); an overload is a reading that was lost. A single row says too little.
+    """
+    cells = table.cells(column)
+    numbers = cells.numbers_at(table.rows)
+    there = cells.filled[table.rows - cells.first]
+    if np.count_nonzero(there) < 2:
+        return ""
+    if not np.isnan(numbers[there]).any():
+        first = float(numbers[there][0])
+        if (numbers[there] != first).any() or not (abs(first) in _MARKS or abs(first) >= NO_NUMBER):
+            return ""
+        return f"{first:.12g} in all {np.count_nonzero(there)} rows"
+    words = {str(value).strip() for value in cells.at(table.rows)} - {""}
+    if len(words) != 1 or not np.isnan(numbers[there]).all():
+        return ""
+    word = words.pop()
+    try:
+        blank = parse_reading(word)
+    except UnitError:
+        return ""
+    is_nothing = isinstance(blank, Blank) and blank.reason in _NOTHING
+    return f"{word!r} in all {np.count_nonzero(there)} rows" if is_nothing else ""
 
 
 def _alone(low: NDArray[np.float64]) -> NDArray[np.bool_]:

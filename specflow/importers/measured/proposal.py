@@ -73,6 +73,8 @@ def _entry(meaning: ColumnMeaning, mapping: LayoutMapping) -> ColumnMapping:
     entry = ColumnMapping(
         header=meaning.header.text, column=letter, scale=None if meaning.scale == 1 else meaning.scale
     )
+    if meaning.of_file:
+        return entry
     if meaning.role is Role.VALUE and meaning.quantity is not None:
         quantity = meaning.quantity
         return replace(

@@ -34,7 +34,8 @@ from specflow.units import (
 
 Floats = NDArray[np.float64]
 
-_FAULTY_BLANKS = ("not a number", "error in the cell", "SCPI")
+#: Blanks behind which there was a reading: out of the range of the instrument, or lost. It may be the one that fails.
+_FAULTY_BLANKS = ("not a number", "error in the cell", "SCPI", "overload", "invalid")
 
 
 @dataclass

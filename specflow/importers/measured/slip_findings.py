@@ -34,9 +34,9 @@ def slip_findings(
 
 
 def _words(columns: EvidenceColumns, value: ValueColumn, slip: Slip) -> str:
-    low = columns.values[value.name].low
+    low, cell = columns.values[value.name].low, _cell(columns, value, slip.place)
     beside = " and ".join(f"{low[one]:.6g} ({_cell(columns, value, one)})" for one in slip.neighbours)
-    return f"{_cell(columns, value, slip.place)}: {low[slip.place]:.6g} {value.unit} stands beside {beside}; {slip.words}"
+    return f"{cell}: {low[slip.place]:.6g} {value.unit} stands beside {beside}; {slip.words}"
 
 
 def _finding(

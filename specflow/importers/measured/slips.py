@@ -30,6 +30,7 @@ _SPIKES = 0.02  # share of readings that may stick out; more is a spectrum full 
 _UNIT_STEP_DB = 30.0
 _LEVEL_MATCH_DB = 0.5
 _MATCH_LONG = 0.02  # the same as _MATCH, where scatter is known from many neighbours
+_MARK_LEAST, _MARK_FAR = 100, 5.0
 _LONGEST = 100_000
 _TRACE = 200  # a level swept at more points is a spectrum, in which lines stand up from the floor
 
@@ -98,7 +99,7 @@ def _along(values: Floats, groups: list[Places], is_level: bool, turns: bool) ->
 
 
 def _candidates(run: Floats, is_level: bool) -> list[int]:
-    """Places at which a reading is off its two neighbours, and these agree; the first and the last have two on a side."""
+    """Places at which a reading is off its two neighbours, and these agree; those of an end are on one side."""
     inner = np.arange(1, len(run) - 1)
     left, right = (
         np.r_[1, inner - 1, len(run) - 2],
@@ -106,15 +107,21 @@ def _candidates(run: Floats, is_level: bool) -> list[int]:
     )
     middle = (run[left] + run[right]) / 2
     agree = np.abs(run[left] - run[right]) <= _AGREE * np.abs(middle)
-    with np.errstate(divide="ignore", invalid="ignore"):
-        ratio = run / middle
-        power = np.log10(np.abs(ratio))
+    usable = (middle != 0) & (run != 0)
+    ratio = np.divide(run, middle, out=np.ones(len(run)), where=usable)
+    power = np.log10(np.abs(ratio))
     whole = np.round(power)
-    slipped = (np.abs(power - whole) < 2 * _MATCH) & (whole != 0) & (np.abs(whole) <= 3) & (middle != 0)
+    slipped = (np.abs(power - whole) < 2 * _MATCH) & (whole != 0) & (np.abs(whole) <= 3)
     slipped |= (ratio < 0) & (np.abs(power) < _MATCH)
     if is_level:
         slipped |= np.abs(np.abs(run - middle) - _UNIT_STEP_DB) <= 2 * _LEVEL_MATCH_DB
+    slipped |= _is_round(run) & (np.abs(run - middle) > _MARK_FAR * np.abs(middle) + _MARK_LEAST / 2)
     return [int(one) for one in np.flatnonzero(agree & slipped)]
+
+
+def _is_round(values: Floats) -> NDArray[np.bool_]:
+    """Which readings are of the form that floors and marks have: -200, 1000."""
+    return np.asarray((np.abs(values) >= _MARK_LEAST) & (np.mod(values, 10) == 0))
 
 
 def _doubted(run: Floats, place: int, is_level: bool, turns: bool) -> tuple[list[int], str] | None:
@@ -158,6 +165,8 @@ def _words(value: float, expected: float, margin: float, is_level: bool, turns: 
                 return f"about {words} them: a slipped decimal, or another prefix of the unit?"
     if not turns and abs(value + expected) <= margin:
         return "of the other sign"
+    if _is_round(np.array(value)) and abs(value - expected) > _MARK_FAR * abs(expected) + _MARK_LEAST / 2:
+        return "far off them and a round number: a floor, or a mark of the instrument?"
     if is_level and abs(abs(value - expected) - _UNIT_STEP_DB) <= _LEVEL_MATCH_DB:
         return "30 dB off them: dBm and dBW, or W and mW, taken for each other?"
     return ""

@@ -21,7 +21,17 @@ from specflow.conditions import (
 from specflow.errors import UnitError
 from specflow.importers.measured.day import day_first, read_day
 from specflow.importers.measured.facts import Fact
+from specflow.importers.measured.formats import format_of
 from specflow.importers.measured.header_text import known_unit, read_header
+from specflow.importers.measured.instrument import (
+    is_bare_serial,
+    is_export,
+    is_own_setting,
+    is_serial_of_instrument,
+    names_instrument,
+    names_model,
+    says_corrected,
+)
 from specflow.importers.measured.names import NAMES, OF_THE_SHEET, canonical, name_of
 from specflow.importers.measured.result import ColumnReading, Question, Role
 from specflow.model.evidence import Equipment, SpectrumKind
@@ -34,6 +44,8 @@ MAPPING = "stated by the mapping"
 _CALIBRATION = re.compile(
     r"^(?P<asset>.*?)\s*\bcal(?:ibration|\.)?\s*(?:due|expir\w*|valid until|until)\b.*$", re.IGNORECASE
 )
+_NAMELESS = "instrument"
+_UNIT_IN_BRACKETS = re.compile(r"^\(\s*[Uu]nits?\s*[:=]\s*(?P<unit>[^()]+?)\s*\)$")
 _REVISION = re.compile(
     r"^(?P<name>.*\S)[\s,]+(?:rev(?:ision)?|issue|iss)\.?\s*(?P<revision>\S+)$", re.IGNORECASE
 )
@@ -47,11 +59,15 @@ _CHOICES: Mapping[str, type[Method] | type[Stage] | type[SpectrumKind]] = {
 
 @dataclass(frozen=True, slots=True)
 class Said:
-    """One thing said: the text, who said it, and the key as written."""
+    """One thing said: the text, who said it, and the key as written.
+
+    ``doubtful``: a serial number in the export of an instrument, which may be that of the instrument.
+    """
 
     text: str
     by: str
     key: str = ""
+    doubtful: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -74,8 +90,9 @@ class Stated:
     """All that is said for a table.
 
     ``said`` is by the names of ``NAMES``, ``conditions`` by dimension; ``items`` are all that were named. ``columns``
-    is what the person says of columns, ``uncertainties`` what is said of single quantities. ``doubts`` are questions
-    about a condition, which are idle where a column gives it row by row.
+    is what the person says of columns, ``uncertainties`` what is said of single quantities. ``corrected`` are
+    lines that say a correction is in the readings already. ``doubts`` are questions about a condition, which are idle
+    where a column gives it row by row.
     """
 
     said: dict[str, Said] = field(default_factory=dict)
@@ -84,6 +101,7 @@ class Stated:
     equipment: list[Equipment] = field(default_factory=list)
     columns: dict[str, str] = field(default_factory=dict)
     uncertainties: list[Said] = field(default_factory=list)
+    corrected: list[Said] = field(default_factory=list)
     readings: list[ColumnReading] = field(default_factory=list)
     questions: list[Question] = field(default_factory=list)
     doubts: dict[str, Question] = field(default_factory=dict)
@@ -116,7 +134,8 @@ def collect(
 
     ``own_dimensions`` are those of the project; the person may state them although no dictionary knows them.
     """
-    collector = _Collector(own_dimensions)
+    facts, sheet_facts = tuple(facts), tuple(sheet_facts)
+    collector = _Collector(own_dimensions, is_export((*facts, *sheet_facts)))
     for key, text in person.items():
         collector.take(key, text, PERSON, "")
     for key, text in mapping.items():
@@ -138,9 +157,10 @@ def holds_below(fact: Fact) -> bool:
 class _Collector:
     """Takes one statement after the other."""
 
-    def __init__(self, own_dimensions: Collection[str]) -> None:
+    def __init__(self, own_dimensions: Collection[str], of_instrument: bool) -> None:
         self.stated = Stated()
         self._own = own_dimensions
+        self._of_instrument = of_instrument
 
     def result(self) -> Stated:
         stated = self.stated
@@ -149,6 +169,7 @@ class _Collector:
             by = stated.by("procedure")
             stated.said["procedure"] = Said(procedure["name"], by)
             stated.said["procedure_revision"] = Said(procedure["revision"], by)
+        stated.equipment = _joined(stated.equipment)
         return stated
 
     def take(self, key: str, text: str, by: str, cell: str) -> None:
@@ -159,9 +180,18 @@ class _Collector:
         if by in (PERSON, MAPPING):
             self._take_word(key, text, by)
         elif calibration:
-            self._take_calibration(calibration["asset"] or "instrument", key, text, by, cell)
+            self._take_calibration(calibration["asset"] or _NAMELESS, key, text, by, cell)
+        elif says_corrected(key, text):
+            self.stated.corrected.append(Said(text, by, key))
+            self._show(key, cell, f"corrected already, by what the file says: {key} {text}", by)
+        elif self._of_instrument and is_own_setting(key):
+            self._leave(key, text, cell)
+        elif names_instrument(key) or (self._of_instrument and names_model(key)):
+            self._take_instrument(key, text, by, cell)
+        elif unit := _UNIT_IN_BRACKETS.match(text):
+            self._take_name("unit", key, unit["unit"], by, cell)
         elif name := name_of(key):
-            self._take_name(_meant(name, text), key, text, by, cell)
+            self._take_name(_meant(name, key, text), key, text, by, cell)
         elif dimension := canonical(key):
             self._take_condition(dimension, key, text, by, cell)
         elif "uncertainty" in key.casefold():
@@ -203,8 +233,18 @@ class _Collector:
             hint = "a simulation is an analysis; " if is_simulation else ""
             self._ask(key, cell, f"{text!r} is no {name} ({by})", f"{hint}one of: {known_choices}")
             return
+        if cell and name in ("unit", "axis_unit") and known_unit(text) is None:
+            self._leave(key, text, cell)
+            return
+        if cell and name == "format" and format_of(text) is None:
+            self._leave(key, text, cell)
+            return
         if name == "item":
-            self.stated.items.append(Said(text, by, key))
+            doubtful = bool(cell) and self._of_instrument and is_bare_serial(key)
+            self.stated.items.append(Said(text, by, key, doubtful))
+            if doubtful:
+                self._show(key, cell, f"{key}: {text}, of the instrument or of the item", by)
+                return
         known = self.stated.said.get(name)
         if known is not None:
             self._compare(known, name, key, text, cell)
@@ -288,6 +328,15 @@ class _Collector:
         self.stated.equipment.append(Equipment(asset=asset, calibration_due=due))
         self._show(key, cell, f"{asset}, calibrated until {due}", by)
 
+    def _take_instrument(self, key: str, text: str, by: str, cell: str) -> None:
+        """An instrument by name; a serial number that follows belongs to the one named before it."""
+        equipment = self.stated.equipment
+        if is_serial_of_instrument(key) and equipment and equipment[-1].calibration_due is None:
+            equipment[-1] = Equipment(asset=f"{equipment[-1].asset} {text}")
+        else:
+            equipment.append(Equipment(asset=text))
+        self._show(key, cell, f"instrument: {text}", by)
+
     def _ask(self, header: str, cell: str, what: str, remedy: str) -> None:
         self.stated.questions.append(Question(header, cell, what, remedy))
 
@@ -298,9 +347,20 @@ class _Collector:
         self.stated.unused.append(f"{cell}: {key} = {text[:60]}")
 
 
-def _meant(name: str, text: str) -> str:
-    """ "Unit: SN 0007" speaks of a specimen, "Unit: dB" of a unit."""
-    return "item" if name == "unit" and known_unit(text) is None else name
+def _meant(name: str, key: str, text: str) -> str:
+    """ "Unit: SN 0007" speaks of a specimen, "Unit: dB" of a unit, and so does "Unit: dBX", although of none known."""
+    speaks_of_item = name == "unit" and key.strip(" :").casefold() == "unit" and known_unit(text) is None
+    return "item" if speaks_of_item and text[:2].casefold() != "db" else name
+
+
+def _joined(equipment: list[Equipment]) -> list[Equipment]:
+    """A date of calibration that names no instrument is that of the only one that is named without a date."""
+    undated = [one for one in equipment if one.calibration_due is None]
+    nameless = [one for one in equipment if one.calibration_due is not None and one.asset == _NAMELESS]
+    if len(undated) != 1 or len(nameless) != 1:
+        return list(dict.fromkeys(equipment))
+    joined = Equipment(asset=undated[0].asset, calibration_due=nameless[0].calibration_due)
+    return [joined, *(one for one in equipment if one not in (undated[0], nameless[0]))]
 
 
 def _number(name: str, wanted: str, text: str, unit: str, by: str) -> StatedCondition | str:

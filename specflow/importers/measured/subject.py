@@ -85,8 +85,9 @@ def item_name(said: Sequence[Said], context: Context) -> str:
                 return name
         if one.by == PERSON:
             return one.text
-    serials = [one.text for one in said if "s" in one.key.casefold()[:2]]
-    return next(iter([*serials, *(one.text for one in said)]), "")
+    sure = [one for one in said if not one.doubtful]
+    serials = [one.text for one in sure if "s" in one.key.casefold()[:2]]
+    return next(iter([*serials, *(one.text for one in sure)]), "")
 
 
 def _named(name: str, blocks: Sequence[Block]) -> Block | None:

@@ -42,12 +42,11 @@ def test_all_points_share_one_array(tmp_path: Path) -> None:
 
 
 def test_blanks_are_counted_by_reason(tmp_path: Path) -> None:
-    table = taken(values_of(tmp_path, "Gain (dB)", [20, "N/A", "—", "OL", "n.m.", None]))
+    table = taken(values_of(tmp_path, "Gain (dB)", [20, "N/A", "—", "n.m.", None]))
     assert table.values == 1 and table.rejected == ()
     assert table.blank == {
         "not applicable: N/A": 1,
         "nothing written: —": 1,
-        "overload of the instrument: OL": 1,
         "not measured: n.m.": 1,
         "nothing written": 1,
     }
@@ -57,6 +56,9 @@ def test_blanks_are_counted_by_reason(tmp_path: Path) -> None:
     ("cell", "words"),
     [
         ("NaN", "not a number"),
+        ("OL", "overload of the instrument"),
+        ("OVLD", "overload of the instrument"),
+        ("uncal", "invalid at the instrument"),
         ("inf", "not a number"),
         ("abc", "'abc' is not a number"),
         ("20*", "note"),

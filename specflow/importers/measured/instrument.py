@@ -1,0 +1,158 @@
+"""What the head of an instrument's export says: that it is one, which instrument, and that something was corrected.
+
+An analyser's own attenuator is no setting of the item, and its serial number is not that of the item under test.
+"""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Iterable
+
+from specflow.importers.measured.facts import Fact
+
+_SETTINGS = frozenset(
+    [
+        "rbw",
+        "vbw",
+        "resbw",
+        "resolutionbandwidth",
+        "videobandwidth",
+        "vbw/rbw",
+        "ifbw",
+        "ifbandwidth",
+        "referencelevel",
+        "reflevel",
+        "ref",
+        "refoffset",
+        "span",
+        "spanfreq",
+        "sweeptime",
+        "sweeppoints",
+        "numpoints",
+        "numberofpoints",
+        "numberpoints",
+        "startfreq",
+        "startfrequency",
+        "stopfreq",
+        "stopfrequency",
+        "centerfreq",
+        "centerfrequency",
+        "centrefrequency",
+        "preamp",
+        "scalediv",
+        "scaletype",
+        "tracename",
+        "meastype",
+        "averaging",
+        "sweepmode",
+        "xstart",
+        "xstop",
+    ]
+)
+_LEAST = 2
+_OF_INSTRUMENT = frozenset(
+    [
+        "attenuation",
+        "att",
+        "attenuationsetting",
+        "inputattenuation",
+        "rfattenuation",
+        "actualrfattenuation",
+        "mode",
+    ]
+)
+_SERIAL = frozenset(["serial", "serialnumber", "serialno", "sn", "s/n", "seriennummer"])
+_NAMES = frozenset(
+    [
+        "instrument",
+        "analyzer",
+        "analyser",
+        "spectrumanalyzer",
+        "spectrumanalyser",
+        "networkanalyzer",
+        "networkanalyser",
+        "powermeter",
+        "powersensor",
+        "signalgenerator",
+        "generator",
+        "receiver",
+        "testreceiver",
+        "emireceiver",
+        "noisefigureanalyser",
+        "noisefigureanalyzer",
+        "noisesource",
+        "vna",
+        "oscilloscope",
+        "testequipment",
+        "equipment",
+        "equipmentused",
+        "instrumentmodel",
+        "instrumentused",
+    ]
+)
+_SERIAL_OF = re.compile(r"^(?:instrument|analy[sz]er|equipment)(?:serial|serialnumber|serialno|sn|s/n)$")
+_CORRECTED = re.compile(
+    r"correct(?:ed|ion)|offset applied|path ?loss|cable loss|antenna factor|probe factor|transducer|de-?embed|"
+    r"ref(?:erence)?(?: level)? offset|external (?:gain|att\w*)|amplitude offset",
+    re.IGNORECASE,
+)
+_NOT_DONE = frozenset(
+    [
+        "no",
+        "off",
+        "none",
+        "false",
+        "not",
+        "applied",
+        "0",
+        "0.0",
+        "uncorrected",
+        "n/a",
+        "-",
+        "disabled",
+        "inactive",
+    ]
+) | {"not applied"}
+
+
+def _plain(key: str) -> str:
+    return re.sub(r"[\s_.:\-]+", "", key.casefold())
+
+
+def is_export(facts: Iterable[Fact]) -> bool:
+    """Whether the facts above a table are the settings of an instrument."""
+    return len({_plain(fact.key) for fact in facts} & _SETTINGS) >= _LEAST
+
+
+def is_own_setting(key: str) -> bool:
+    """Whether a key of such an export speaks of the instrument, although tables of readings use it for the item."""
+    return _plain(key) in _OF_INSTRUMENT
+
+
+def is_bare_serial(key: str) -> bool:
+    """Whether a key is a serial number that does not say of what."""
+    return _plain(key) in _SERIAL
+
+
+def is_serial_of_instrument(key: str) -> bool:
+    """Whether a key is the serial number of an instrument: "Instrument serial"."""
+    return _SERIAL_OF.match(_plain(key)) is not None
+
+
+def names_instrument(key: str) -> bool:
+    """Whether a key names the instrument that was used, or its serial number."""
+    return _plain(key) in _NAMES or is_serial_of_instrument(key)
+
+
+def names_model(key: str) -> bool:
+    """Whether a key of an export names the model of the instrument."""
+    return _plain(key) in ("model", "machinemodule", "modelnumber", "instrumentmodel")
+
+
+def says_corrected(key: str, text: str) -> bool:
+    """Whether a fact says that readings hold a correction already: "Path loss corrected: yes", "Ref Offset: 10 dB"."""
+    value = text.strip().casefold()
+    if not _CORRECTED.search(key) or value in _NOT_DONE:
+        return False
+    number = re.fullmatch(r"([+\-]?[0-9.]+)\s*(?:db)?", value)
+    return number is None or float(number[1]) != 0
