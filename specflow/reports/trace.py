@@ -11,18 +11,18 @@ from specflow.model.base import code_key
 from specflow.model.block import Block
 from specflow.model.budget import Allocation, Budget
 from specflow.model.card import TrailStep
-from specflow.model.evidence import EvidenceFile, EvidenceTable, ValueColumn
-from specflow.model.origin import Origin, column_letters
+from specflow.model.evidence import EvidenceTable
 from specflow.model.report import CellTone, ReportCell, ReportColumn, ReportRow, ReportTable
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Results, Snapshot
-from specflow.model.verdict import ActivityResult, PointResults, RequirementStatus, Verdict
+from specflow.model.verdict import ActivityResult, PointResults, RecordRef, RequirementStatus, Verdict
 from specflow.reports.budget_trail import budget_words, line_words
 from specflow.reports.derivation_trail import derivation_steps, table_derivation_steps
 from specflow.reports.figures import interval, label_tone, margin, share, verdict_tone
 from specflow.reports.lacking import Lacking
 from specflow.reports.origins import OriginFinder
 from specflow.reports.points import points_of, record_at, shown_items, words_of
+from specflow.reports.provenance import column_steps, file_step, reading_steps, received_step
 from specflow.reports.serving import Served, governed_points
 
 MOST_POINTS = 400  # a trail is read by people; the points table of an export has them all
@@ -35,16 +35,20 @@ def requirement_trail(
     *,
     finder: OriginFinder | None = None,
     most_points: int = MOST_POINTS,
+    how_read: bool = False,
 ) -> tuple[TrailStep, ...]:
     """Return the trail, parents first (depth < 0), the requirement (0), then what is below it (> 0).
 
-    Of each item at most ``most_points`` points are listed, those that decide first.
+    Of each item at most ``most_points`` points are listed, those that decide first. ``how_read`` adds below each file
+    by what its tables were read, and the columns, and to each point what was converted.
     """
     return (
         *_upwards(requirement, snapshot, results, -1, frozenset()),
         _requirement_step(requirement, results, 0),
         *_allocations(requirement, snapshot, results),
-        *_evidence(requirement, snapshot, results, finder or OriginFinder(snapshot), most_points),
+        *_evidence(requirement, snapshot, results, finder or OriginFinder(snapshot), most_points, how_read),
+        *_files(requirement, results.of(requirement.id), snapshot, how_read=how_read),
+        *_not_counted(results.of(requirement.id)),
     )
 
 
@@ -137,7 +141,12 @@ def _allocation_source(link: Allocation | None) -> str:
 
 
 def _evidence(
-    requirement: Requirement, snapshot: Snapshot, results: Results, finder: OriginFinder, most: int
+    requirement: Requirement,
+    snapshot: Snapshot,
+    results: Results,
+    finder: OriginFinder,
+    most: int,
+    how_read: bool,
 ) -> Iterator[TrailStep]:
     status = results.of(requirement.id)
     points = points_of(snapshot, requirement)
@@ -155,7 +164,8 @@ def _evidence(
                     kind="point",
                     id=record.table if record else "",
                     text=f"{words_of(points, place)}{f', item {item}' if item else ''}: "
-                    f"{_point_words(found, place, requirement, status, lacking)}",
+                    f"{_point_words(found, place, requirement, status, lacking)}"
+                    f"{_as_recorded(record, requirement, finder) if how_read else ''}",
                     tone=verdict_tone(_verdict(found, place)),
                     origin=finder.origin(record),
                 )
@@ -165,21 +175,31 @@ def _evidence(
                 yield TrailStep(
                     depth=2, kind="point", text=f"... and {len(places) - len(listed)} more points"
                 )
-    yield from _files(status, snapshot)
-    yield from _not_counted(status)
 
 
-def _files(status: RequirementStatus, snapshot: Snapshot) -> Iterator[TrailStep]:
-    """Give the files that governing records stand in, with the hash that says which bytes they were."""
+def _as_recorded(record: RecordRef | None, requirement: Requirement, finder: OriginFinder) -> str:
+    """Say what stands in the cell where its unit is not that of the limit: the value was converted to be judged."""
+    if record is None or finder.column(record).unit == requirement.limit.unit:
+        return ""
+    return f" · recorded as {finder.recorded(record).text}, converted"
+
+
+def _files(
+    requirement: Requirement, status: RequirementStatus, snapshot: Snapshot, *, how_read: bool
+) -> Iterator[TrailStep]:
+    """Give the files that governing records stand in, with their hash, and below each how the tables were read."""
     found = [results for activity in status.activities for results in activity.items.values()]
     named = dict.fromkeys(table for results in found for table in governed_points(results))
-    files: dict[str, TrailStep] = {}
+    files: dict[str, list[EvidenceTable]] = {}
     for name in named:
         table = snapshot.find(EvidenceTable, name)
         if table is not None:
-            step = _file_step(table, snapshot)
-            files.setdefault(table.file, step.model_copy(update={"depth": 1, "origin": None}))
-    yield from files.values()
+            files.setdefault(table.file, []).append(table)
+    for tables in files.values():
+        yield file_step(tables[0], snapshot).model_copy(update={"depth": 1, "origin": None})
+        for table in tables if how_read else ():
+            yield from reading_steps(table, snapshot, 2)
+            yield from column_steps(table, 3, parameter=requirement.quantity.parameter)
 
 
 def deciding(found: PointResults | None, places: Sequence[int], most: int) -> Sequence[int]:
@@ -251,15 +271,19 @@ def table_trail(
 ) -> tuple[TrailStep, ...]:
     """Return the way back: from a file and its table to the requirements that its records govern."""
     governed = served.get(code_key(table.id), {})
+    received = received_step(table, snapshot)
+    accepted = f"{table.accepted_by or 'nobody yet'} {table.accepted_at}".strip()
     steps = [
-        _file_step(table, snapshot),
+        file_step(table, snapshot),
+        *([received] if received else []),
         TrailStep(
             depth=0,
             kind="table",
             id=table.id,
-            text=f"{table.rows} rows for block {table.block}, accepted by {table.accepted_by or 'nobody yet'}",
+            text=f"{table.rows} rows for block {table.block}, accepted by {accepted}",
         ),
-        *(_column_step(table, column) for column in table.values),
+        *reading_steps(table, snapshot, 1),
+        *column_steps(table, 1),
         *table_derivation_steps(table, snapshot, 1),
     ]
     for code, count in governed.items():
@@ -270,29 +294,6 @@ def table_trail(
         why = results.unmatched.get(table.id) or "no record of it governs a required point"
         steps.append(TrailStep(depth=1, kind="requirement", text=why, tone=CellTone.DOUBTFUL))
     return tuple(steps)
-
-
-def _file_step(table: EvidenceTable, snapshot: Snapshot) -> TrailStep:
-    file = snapshot.find(EvidenceFile, table.file)
-    name = file.name if file else table.file
-    sha256 = file.sha256 if file else ""
-    return TrailStep(
-        depth=-1,
-        kind="file",
-        id=table.file,
-        text=f"{name}, SHA-256 {sha256}" if sha256 else name,
-        origin=Origin(file=name, sha256=sha256, sheet=table.sheet),
-    )
-
-
-def _column_step(table: EvidenceTable, column: ValueColumn) -> TrailStep:
-    return TrailStep(
-        depth=1,
-        kind="column",
-        id=table.id,
-        text=f"column {column_letters(column.column)}: {column.quantity.parameter} in {column.unit} "
-        f"(unit from {column.unit_from})",
-    )
 
 
 def _served_step(requirement: Requirement, governed: int, results: Results) -> TrailStep:
@@ -323,7 +324,7 @@ def block_trail(block: Block, snapshot: Snapshot, results: Results, served: Serv
     for table in snapshot.tables_of_block.get(code_key(block.id), ()):
         governed = served.get(code_key(table.id), {})
         serves = ", ".join(governed) if governed else "no required point"
-        step = _file_step(table, snapshot)
+        step = file_step(table, snapshot)
         text = f"{table.rows} rows, governs points of {serves}"
         steps.append(step.model_copy(update={"depth": 1, "kind": "table", "id": table.id, "text": text}))
     return tuple(steps)

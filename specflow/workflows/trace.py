@@ -32,7 +32,7 @@ def _title(subject: Subject) -> str:
 def _steps(subject: Subject, evaluation: Evaluation) -> Sequence[TrailStep]:
     snapshot, results = evaluation.snapshot, evaluation.results
     if isinstance(subject, Requirement):
-        return requirement_trail(subject, snapshot, results)
+        return requirement_trail(subject, snapshot, results, how_read=True)
     served = requirements_served(snapshot, results)
     if isinstance(subject, Block):
         return block_trail(subject, snapshot, results, served)

@@ -160,3 +160,16 @@ def test_the_version_is_printed(command: Command) -> None:
     from specflow import __version__
 
     assert command("--version").out.strip() == __version__
+
+
+def test_trace_says_how_each_table_was_read(command: Command, project: Path) -> None:
+    for name in ("PA-1", "T-PA"):
+        steps = json.loads(command("trace", name, "--json", *AS_OF).out)
+        said = {step["kind"]: step["text"] for step in steps}
+        assert said["read by"].startswith("importer ") and "no mapping" in said["read by"]
+        columns = [step["text"] for step in steps if step["kind"] == "column"]
+        assert any("in W (unit from header); no conversion" in text for text in columns)
+        assert "frequency in GHz" in " ".join(step["text"] for step in steps if step["kind"] == "condition")
+    assert "recorded as 1.4 W, converted" in command("trace", "PA-1", *AS_OF).out
+    received = next(step for step in steps if step["kind"] == "received")
+    assert received["text"].startswith("20480 bytes, received ") and "no copy is kept" in received["text"]

@@ -180,7 +180,7 @@ def test_a_table_leads_back_to_the_requirements_it_governs() -> None:
     table = SNAPSHOT.find(EvidenceTable, "T-PA")
     assert table is not None
     steps = table_trail(table, SNAPSHOT, RESULTS, requirements_served(SNAPSHOT, RESULTS))
-    assert kinds(steps)[:2] == [(-1, "file", "F-PA"), (0, "table", "T-PA")]
+    assert kinds(steps)[:3] == [(-1, "file", "F-PA"), (-1, "received", "F-PA"), (0, "table", "T-PA")]
     assert [step.id for step in steps if step.kind == "requirement"] == ["PA-1", "PA-2"]
     assert harbour.PA_FILE.sha256 in steps[0].text
 

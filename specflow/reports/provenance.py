@@ -1,0 +1,89 @@
+"""How a stored table came to be: its bytes, the mapping and importer that read it, its columns and units."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+from specflow.model.base import code_key
+from specflow.model.card import TrailStep
+from specflow.model.evidence import ConditionColumn, EvidenceFile, EvidenceTable, ValueColumn
+from specflow.model.origin import Origin, column_letters
+from specflow.model.snapshot import Snapshot
+
+
+def file_step(table: EvidenceTable, snapshot: Snapshot) -> TrailStep:
+    """Return the file of a table with the hash that says which bytes it was."""
+    file = snapshot.find(EvidenceFile, table.file)
+    name = file.name if file else table.file
+    sha256 = file.sha256 if file else ""
+    return TrailStep(
+        depth=-1,
+        kind="file",
+        id=table.file,
+        text=f"{name}, SHA-256 {sha256}" if sha256 else name,
+        origin=Origin(file=name, sha256=sha256, sheet=table.sheet),
+    )
+
+
+def received_step(table: EvidenceTable, snapshot: Snapshot) -> TrailStep | None:
+    """Return when and from where the file came, and whether the project keeps a copy; None without its document."""
+    file = snapshot.find(EvidenceFile, table.file)
+    if file is None:
+        return None
+    facts = [f"{file.size} bytes", f"received {file.received_at}" if file.received_at else ""]
+    facts += [f"from {file.received_from}" if file.received_from else ""]
+    facts += [
+        f"lay at {file.path}" if file.path else "",
+        "a copy is kept" if file.kept else "no copy is kept",
+    ]
+    return TrailStep(depth=-1, kind="received", id=file.id, text=", ".join(filter(None, facts)))
+
+
+def reading_steps(table: EvidenceTable, snapshot: Snapshot, depth: int) -> Iterator[TrailStep]:
+    """Give how a table was read: by which importer and mapping, from which cells, with what stated."""
+    file = snapshot.find(EvidenceFile, table.file)
+    how = table.how_read
+    importer = how.importer or (file.importer_version if file else "")
+    by_mapping = (
+        f"mapping {table.mapping} revision {table.mapping_revision}" if table.mapping else "no mapping"
+    )
+    facts = [f"importer {importer or 'not recorded'}", by_mapping]
+    facts += [f"layout {how.layout}" if how.layout else "", f"cells {how.place}" if how.place else ""]
+    facts += ["hidden rows read, too"] if how.include_hidden_rows else []
+    facts += [f"stated by the person: {name} = {said}" for name, said in how.stated]
+    facts += [f"correction: {one}" for one in table.corrections]
+    yield TrailStep(depth=depth, kind="read by", id=table.id, text=", ".join(filter(None, facts)))
+
+
+def column_steps(table: EvidenceTable, depth: int, *, parameter: str = "") -> Iterator[TrailStep]:
+    """Give the columns: of each what it means, where its unit was found, what was converted, where u is from.
+
+    Of the value columns only those of ``parameter``, if one is given.
+    """
+    for condition in table.conditions:
+        yield TrailStep(depth=depth, kind="condition", id=table.id, text=_condition_words(condition))
+    for column in table.values:
+        if parameter and code_key(column.quantity.parameter) != code_key(parameter):
+            continue
+        yield TrailStep(depth=depth, kind="column", id=table.id, text=_column_words(column))
+
+
+def _condition_words(condition: ConditionColumn) -> str:
+    name = condition.dimension.replace("_", " ")
+    what = f"{name} in {condition.unit}" if condition.unit else name
+    if condition.column is None:
+        return f"{what}, {condition.stated_by}"
+    source = f" (unit from {condition.unit_from})" if condition.unit_from and condition.unit else ""
+    return f"column {column_letters(condition.column)}: {what}{source}"
+
+
+def _column_words(column: ValueColumn) -> str:
+    parts = [
+        f"column {column_letters(column.column)}: {column.quantity.parameter} in {column.unit} "
+        f"(unit from {column.unit_from})"
+    ]
+    parts += column.conversions or ("no conversion",)
+    parts += (
+        [f"uncertainty from {column.uncertainty_from}"] if column.uncertainty_from else ["no uncertainty"]
+    )
+    return "; ".join(parts)
