@@ -168,7 +168,7 @@ def test_trace_says_how_each_table_was_read(command: Command, project: Path) -> 
         said = {step["kind"]: step["text"] for step in steps}
         assert said["read by"].startswith("importer ") and "no mapping" in said["read by"]
         columns = [step["text"] for step in steps if step["kind"] == "column"]
-        assert any("in W (unit from header); no conversion" in text for text in columns)
+        assert any("in W (unit from units row); no conversion" in text for text in columns)
         assert "frequency in GHz" in " ".join(step["text"] for step in steps if step["kind"] == "condition")
     assert "recorded as 1.4 W, converted" in command("trace", "PA-1", *AS_OF).out
     received = next(step for step in steps if step["kind"] == "received")
