@@ -2,29 +2,19 @@
 
 from __future__ import annotations
 
-import csv
-import io
-import re
-from collections.abc import Callable
-
 from specflow.errors import FileError
-from specflow.importers.readers.delimiter import (
-    BLANKS,
-    AmbiguousComma,
-    Layout,
-    find_layout,
-    is_number,
-    split,
-    split_to_width,
-)
+from specflow.importers.readers.delimiter import AmbiguousComma, Layout, find_layout
 from specflow.importers.readers.encoding import decode
 from specflow.importers.readers.grid import Grid
+from specflow.importers.readers.large_text import read_large_text
 from specflow.importers.readers.source import Source
-from specflow.importers.readers.stores import Value
+from specflow.importers.readers.text_rows import TextLines
 
 MAX_FIELDS = 16_000_000
+"""The most fields that are read one by one; plain columns of numbers may be longer (``large_text``)."""
 
-COMMENT_MARKS = ("#", "!", "%", "//")
+LARGE_BYTES = 4 * 1024 * 1024
+"""Larger files are read into columns of numbers where they can."""
 
 _WORKBOOK_HEADS = (b"PK\x03\x04", b"\xd0\xcf\x11\xe0")
 
@@ -37,56 +27,38 @@ def read_csv(source: Source) -> list[Grid]:
             where=source.name,
             hint="give it its true ending (.xlsx)",
         )
+    if len(source.content) > LARGE_BYTES and (grid := read_large_text(source, _layout)) is not None:
+        return [grid]
     text, notes = decode(source)
     lines = text.split("\n")
     if not lines[-1]:
         lines.pop()
     if not any(map(str.strip, lines)):
         raise FileError("the file holds nothing but blanks", where=source.name, hint="export it again")
-    comments = _comment_rows(lines)
-    layout = _layout(source, lines, comments)
-    rows = _rows(source, text, lines, layout, notes)
-    _part_comments_and_headers(rows, lines, comments, layout)
+    part = TextLines(text, lines)
+    layout = _layout(source, lines, part.comments)
+    _check_size(source, text, lines, layout)
     return [
         Grid(
             name=source.name,
-            rows=rows,
+            rows=part.rows(layout),
             file=source.name,
-            comment_rows=frozenset(comments),
+            comment_rows=frozenset(part.comments),
             is_text=True,
             decimal=layout.decimal,
-            notes=tuple(notes),
+            notes=(*notes, *part.notes),
         )
     ]
 
 
-def _comment_rows(lines: list[str]) -> set[int]:
-    """Line numbers of comments: ``%`` only where the file begins with it, since ``% rms`` may be a unit."""
-    first = next(line for line in lines if line.strip()).lstrip()
-    found = {number for number, line in enumerate(lines, start=1) if _comment_text(line) is not None}
-    if first.lower().startswith("sep=") and len(first.strip()) == len("sep=;"):
-        found.add(1)
-    if not first.startswith("%"):
-        found = {number for number in found if not lines[number - 1].lstrip().startswith("%")}
-    counted = {number for number in found if re.match(r"#[0-9]", lines[number - 1].lstrip())}
-    if not counted:
-        return found
-    rows = sum(_is_data(line) for number, line in enumerate(lines, start=1) if number not in found)
-    return found - counted if len(counted) > rows else found  # "#12", "#13" are names in the first column
-
-
-def _comment_text(line: str) -> str | None:
-    """The line without its comment mark, None if it has none; in ``#,Gain`` the mark is a title."""
-    text = line.lstrip()
-    if not text.startswith(COMMENT_MARKS):
-        return None
-    rest = text.lstrip("#!%/") if not text.startswith("//") else text.lstrip("/")
-    return None if rest[:1] in (",", ";", "\t", "|") else rest
-
-
-def _is_data(line: str) -> bool:
-    fields = [field for field in line.replace(";", " ").replace(",", " ").split() if field]
-    return len(fields) > 1 and sum(map(is_number, fields)) * 2 >= len(fields)
+def _check_size(source: Source, text: str, lines: list[str], layout: Layout) -> None:
+    fields = text.count(layout.delimiter) + len(lines)
+    if fields > MAX_FIELDS:
+        raise FileError(
+            f"the file has about {fields:,} fields, more than {MAX_FIELDS:,}",
+            where=source.name,
+            hint="split it",
+        )
 
 
 def _layout(source: Source, lines: list[str], comments: set[int]) -> Layout:
@@ -103,79 +75,3 @@ def _layout(source: Source, lines: list[str], comments: set[int]) -> Layout:
             where=source.name,
             hint="export with semicolons between the fields, or with decimal points",
         ) from None
-
-
-def _rows(source: Source, text: str, lines: list[str], layout: Layout, notes: list[str]) -> list[list[Value]]:
-    fields = text.count(layout.delimiter) + len(lines)
-    if fields > MAX_FIELDS:
-        raise FileError(
-            f"the file has about {fields:,} fields, more than {MAX_FIELDS:,}",
-            where=source.name,
-            hint="split it",
-        )
-    if layout.delimiter == BLANKS:
-        return [list(line.split()) for line in lines]
-    if '"' in text:
-        try:
-            return _quoted_rows(text, layout.delimiter)
-        except csv.Error:
-            notes.append("the quotes are not in pairs; they were read as plain characters")
-    strip = any(
-        f"{layout.delimiter}{blank}" in text or f"{blank}{layout.delimiter}" in text for blank in " \t"
-    )
-    parted: Callable[[str], list[Value]] = (
-        _parted_stripped(layout.delimiter) if strip else _parted(layout.delimiter)
-    )
-    return [parted(line) if line.strip() else [] for line in lines]
-
-
-def _parted(delimiter: str) -> Callable[[str], list[Value]]:
-    return lambda line: list(line.split(delimiter))
-
-
-def _parted_stripped(delimiter: str) -> Callable[[str], list[Value]]:
-    return lambda line: [field.strip() for field in line.split(delimiter)]
-
-
-def _quoted_rows(text: str, delimiter: str) -> list[list[Value]]:
-    """Rows with quoted fields; a row that goes over several lines stands at its first, the others are empty."""
-    rows: list[list[Value]] = []
-    reader = csv.reader(
-        io.StringIO(text, newline=""), delimiter=delimiter, skipinitialspace=True, strict=True
-    )
-    for fields in reader:
-        cells: list[Value] = [field.strip() for field in fields]
-        rows.append(cells if any(cells) or len(cells) > 1 else [])
-        rows.extend([] for _ in range(reader.line_num - len(rows)))
-    return rows
-
-
-def _part_comments_and_headers(
-    rows: list[list[Value]], lines: list[str], comments: set[int], layout: Layout
-) -> None:
-    """Part comment lines without their mark, and header lines that use other separators than the body."""
-    for number in comments:
-        text = (_comment_text(lines[number - 1]) or "").strip()
-        fields = split(text, layout.delimiter) if layout.delimiter != BLANKS else [text]
-        rows[number - 1] = list(_at_width(fields, text, layout.width)) if text else []
-    if layout.width < 2:
-        return
-    for place, row in enumerate(rows):
-        if row and len(row) != layout.width and place + 1 not in comments:
-            line = lines[place].strip()
-            if layout.delimiter == BLANKS:
-                rows[place] = list(
-                    split_to_width(line, layout.width, single_blanks=True) or _words(line, row)
-                )
-            elif len(row) == 1 and '"' not in line:
-                rows[place] = list(_at_width([line], line, layout.width))
-
-
-def _at_width(fields: list[str], line: str, width: int) -> list[str]:
-    return fields if len(fields) > 1 or width < 2 else (split_to_width(line, width) or fields)
-
-
-def _words(line: str, row: list[Value]) -> list[str]:
-    """A line of another width among runs of blanks: a row of numbers stays parted, prose is one cell."""
-    fields = [str(field) for field in row]
-    return fields if all(map(is_number, fields)) else [line]

@@ -234,7 +234,7 @@ class Grid:
                     other = np.pad(other, (above, below))
                 return numbers, other
         cells = self.column(column, start, stop)
-        numbers = _text_floats(cells, self.decimal) if self.is_text else _number_floats(cells)
+        numbers = text_floats(cells, self.decimal) if self.is_text else _number_floats(cells)
         other = np.zeros(len(cells), bool)
         for here in np.flatnonzero(~np.isfinite(numbers)).tolist():
             other[here] = not is_blank(cells[here])
@@ -387,7 +387,7 @@ def _number_floats(cells: list[Value]) -> NDArray[np.float64]:
     return np.array([cell if type(cell) in (float, int) else np.nan for cell in cells], dtype=np.float64)
 
 
-def _text_floats(cells: list[Value], decimal: str) -> NDArray[np.float64]:
+def text_floats(cells: list[Value], decimal: str) -> NDArray[np.float64]:
     """Cells of a csv file. numpy (like ``float``) also takes ``1_000`` and digits of other scripts: not here."""
     texts = [str(cell) for cell in cells]
     joined = "".join(texts)

@@ -1,0 +1,122 @@
+"""The lines of a text table as rows of cells: comments without their mark, fields without the blanks around them."""
+
+from __future__ import annotations
+
+import csv
+import io
+import re
+
+from specflow.importers.readers.delimiter import BLANKS, Layout, is_number, split, split_to_width
+from specflow.importers.readers.stores import Value
+
+COMMENT_MARKS = ("#", "!", "%", "//")
+
+
+class TextLines:
+    """Some lines of a text table. ``first`` is the first line of the file that is not blank, by which the comment mark
+    is known; ``comments`` are the numbers of the comment lines, counted from 1 in these lines."""
+
+    def __init__(self, text: str, lines: list[str], first: str | None = None) -> None:
+        self._text = text
+        self._lines = lines
+        self.notes: list[str] = []
+        self.comments = _comment_rows(
+            lines, next(line for line in lines if line.strip()) if first is None else first
+        )
+
+    def rows(self, layout: Layout) -> list[list[Value]]:
+        """The cells of each line; blank lines are empty rows."""
+        rows = self._parted(layout)
+        self._part_comments(rows, layout)
+        if layout.width >= 2:
+            self._part_headers(rows, layout)
+        return rows
+
+    def _parted(self, layout: Layout) -> list[list[Value]]:
+        if layout.delimiter == BLANKS:
+            return [list(line.split()) for line in self._lines]
+        if '"' in self._text:
+            try:
+                return _quoted_rows(self._text, layout.delimiter)
+            except csv.Error:
+                self.notes.append("the quotes are not in pairs; they were read as plain characters")
+        return [
+            [field.strip() for field in line.split(layout.delimiter)] if line.strip() else []
+            for line in self._lines
+        ]
+
+    def _part_comments(self, rows: list[list[Value]], layout: Layout) -> None:
+        """Part comment lines without their mark."""
+        for number in self.comments:
+            text = (_comment_text(self._lines[number - 1]) or "").strip()
+            fields = split(text, layout.delimiter) if layout.delimiter != BLANKS else [text]
+            rows[number - 1] = list(_at_width(fields, text, layout.width)) if text else []
+
+    def _part_headers(self, rows: list[list[Value]], layout: Layout) -> None:
+        """Part header lines that use other separators than the body."""
+        for place, row in enumerate(rows):
+            if row and len(row) != layout.width and place + 1 not in self.comments:
+                line = self._lines[place].strip()
+                if layout.delimiter == BLANKS:
+                    rows[place] = list(
+                        split_to_width(line, layout.width, single_blanks=True) or _words(line, row)
+                    )
+                elif len(row) == 1 and '"' not in line:
+                    rows[place] = list(_at_width([line], line, layout.width))
+
+
+def _comment_rows(lines: list[str], first: str) -> set[int]:
+    """Line numbers of comments: ``%`` only where the file begins with it, since ``% rms`` may be a unit."""
+    first = first.lstrip()
+    found = {number for number, line in enumerate(lines, start=1) if _comment_text(line) is not None}
+    if lines[0].lstrip() == first and is_separator_line(first):
+        found.add(1)
+    if not first.startswith("%"):
+        found = {number for number in found if not lines[number - 1].lstrip().startswith("%")}
+    counted = {number for number in found if re.match(r"#[0-9]", lines[number - 1].lstrip())}
+    if not counted:
+        return found
+    rows = sum(_is_data(line) for number, line in enumerate(lines, start=1) if number not in found)
+    return found - counted if len(counted) > rows else found  # "#12", "#13" are names in the first column
+
+
+def _comment_text(line: str) -> str | None:
+    """The line without its comment mark, None if it has none; in ``#,Gain`` the mark is a title."""
+    text = line.lstrip()
+    if not text.startswith(COMMENT_MARKS):
+        return None
+    rest = text.lstrip("#!%/") if not text.startswith("//") else text.lstrip("/")
+    return None if rest[:1] in (",", ";", "\t", "|") else rest
+
+
+def is_separator_line(line: str) -> bool:
+    """``sep=;`` at the head of a file says what parts its fields."""
+    return line.lower().startswith("sep=") and len(line.strip()) == len("sep=;")
+
+
+def _is_data(line: str) -> bool:
+    fields = [field for field in line.replace(";", " ").replace(",", " ").split() if field]
+    return len(fields) > 1 and sum(map(is_number, fields)) * 2 >= len(fields)
+
+
+def _quoted_rows(text: str, delimiter: str) -> list[list[Value]]:
+    """Rows with quoted fields; a row that goes over several lines stands at its first, the others are empty."""
+    rows: list[list[Value]] = []
+    reader = csv.reader(
+        io.StringIO(text, newline=""), delimiter=delimiter, skipinitialspace=True, strict=True
+    )
+    for fields in reader:
+        cells: list[Value] = [field.strip() for field in fields]
+        rows.append(cells if any(cells) or len(cells) > 1 else [])
+        rows.extend([] for _ in range(reader.line_num - len(rows)))
+    return rows
+
+
+def _at_width(fields: list[str], line: str, width: int) -> list[str]:
+    return fields if len(fields) > 1 or width < 2 else (split_to_width(line, width) or fields)
+
+
+def _words(line: str, row: list[Value]) -> list[str]:
+    """A line of another width among runs of blanks: a row of numbers stays parted, prose is one cell."""
+    fields = [str(field) for field in row]
+    return fields if all(map(is_number, fields)) else [line]
