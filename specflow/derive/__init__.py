@@ -15,12 +15,13 @@ formula, validity and source in its docstring, and list it in the table of its f
 
 from __future__ import annotations
 
+from specflow.derive.edges import EDGE_LAWS
 from specflow.derive.law import Law, Outcome, Setting
 from specflow.derive.ranges import RANGE_LAWS
 from specflow.derive.said import complete_settings
 from specflow.derive.table import Derived, Refused, Request, Role, derive_table
 
-LAWS: tuple[Law, ...] = (*RANGE_LAWS,)
+LAWS: tuple[Law, ...] = (*RANGE_LAWS, *EDGE_LAWS)
 
 LAW_BY_NAME = {law.name: law for law in LAWS}
 

@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.conditions.axes import slack
-from specflow.conditions.words import range_words, value_words
+from specflow.conditions.words import difference_words, range_words
 from specflow.derive.samples import Range
 from specflow.errors import CalculationError
 
@@ -25,39 +25,63 @@ class Coverage:
 
 
 def covered_rows(
-    along: Floats, has_value: NDArray[np.bool_], wanted: Range, name: str, unit: str
+    along: Floats,
+    has_value: NDArray[np.bool_],
+    wanted: Range,
+    name: str,
+    unit: str,
+    *,
+    brackets: bool = False,
 ) -> Coverage:
     """Return the rows of a group that a law over ``wanted`` reads.
 
-    Both ends must be reached within the stated tolerance, and neighbours lie no farther apart than the stated step.
-    Rows without a value are left out; without a stated step they are refused, because nobody said how large a hole may
-    be. Raises CalculationError with the range there is and the range needed.
+    Both ends must be reached within the stated tolerance (with ``brackets`` lie between two readings, and the readings
+    beyond the ends enter, too), and neighbours lie no farther apart than the stated step. Rows without a value are
+    left out; without a stated step they are refused, because nobody said how large a hole may be. Raises
+    CalculationError with the range there is and the range needed.
     """
     edge = np.array([wanted.low, wanted.high])
     reach = wanted.tolerance + slack(edge, np.full(2, wanted.tolerance))
     inside = (along >= wanted.low - reach[0]) & (along <= wanted.high + reach[1])
-    rows = np.flatnonzero(inside & has_value)
     empty = int(np.count_nonzero(inside & ~has_value))
     if empty and wanted.step is None:
         raise CalculationError(
             f"{empty} of {np.count_nonzero(inside)} rows in the range have no value",
             hint="state the largest gap allowed, as in 'step 0.1 GHz', or read the cells that were rejected",
         )
+    rows = np.flatnonzero(inside & has_value)
     rows = rows[np.argsort(along[rows], kind="stable")]
+    if brackets:
+        rows = _bracketed(along, has_value, rows, wanted, reach)
     _check_ends(along, along[rows], wanted, reach, name, unit)
-    gaps = np.diff(along[rows])
-    widest = int(np.argmax(gaps)) if len(gaps) else 0
-    largest = float(gaps[widest]) if len(gaps) else 0.0
-    if wanted.step is not None and largest > wanted.step + float(
-        slack(np.array(wanted.step), np.array(wanted.step))
-    ):
-        low, high = along[rows[widest]], along[rows[widest + 1]]
+    return Coverage(rows, _largest_gap(along[rows], wanted.step, name, unit))
+
+
+def _bracketed(along: Floats, has_value: NDArray[np.bool_], rows: Rows, wanted: Range, reach: Floats) -> Rows:
+    """Add the nearest reading beyond an end that no reading stands at."""
+    known = np.flatnonzero(has_value & ~np.isnan(along))
+    below = known[along[known] < wanted.low - reach[0]]
+    above = known[along[known] > wanted.high + reach[1]]
+    if len(below) and not (len(rows) and along[rows[0]] <= wanted.low + reach[0]):
+        rows = np.concatenate([[below[np.argmax(along[below])]], rows])
+    if len(above) and not (len(rows) and along[rows[-1]] >= wanted.high - reach[1]):
+        rows = np.concatenate([rows, [above[np.argmin(along[above])]]])
+    return rows.astype(np.intp)
+
+
+def _largest_gap(inside: Floats, step: float | None, name: str, unit: str) -> float:
+    gaps = np.diff(inside)
+    if not len(gaps):
+        return 0.0
+    widest = int(np.argmax(gaps))
+    largest = float(gaps[widest])
+    if step is not None and largest > step + float(slack(np.array(inside[widest + 1]), np.array(step))):
+        between = range_words(name, float(inside[widest]), float(inside[widest + 1]), unit)
         raise CalculationError(
-            f"no value between {range_words(name, float(low), float(high), unit)}; the step is "
-            f"{value_words(name, wanted.step, unit)}",
+            f"no value between {between.replace(' to ', ' and ')}; the step is {difference_words(step, unit)}",
             hint="measure there, or state a larger step",
         )
-    return Coverage(rows, largest)
+    return largest
 
 
 def _check_ends(along: Floats, inside: Floats, wanted: Range, reach: Floats, name: str, unit: str) -> None:

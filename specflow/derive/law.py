@@ -16,8 +16,8 @@ from specflow.derive.samples import Samples
 Floats = NDArray[np.float64]
 Rows = NDArray[np.intp]
 
-#: What a law runs over: a stated range of one condition; directions on the sphere; nothing (all rows of a group).
-Over = Literal["range", "directions", "rows"]
+#: What a law runs over: a stated range of one condition; directions on the sphere; nothing (each row by itself).
+Over = Literal["range", "directions", "each"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -78,11 +78,13 @@ def single(
 
 @dataclass(frozen=True, slots=True)
 class Law:
-    """One entry. ``roles`` are the value columns it reads; ``pair`` names a condition whose words tell two apart.
+    """One entry. ``roles`` are the value columns it reads.
 
     ``needs`` says in a sentence what must be stored. ``gives``: parameters it usually gives (for proposals).
     ``takes_bounds``: readings that are intervals ("< -90") may enter. ``takes_repeats``: several readings at one
-    axis value may.
+    axis value may. ``statistic``: what the result is called where it is of the same parameter as the readings ("" where it
+    is a reading like the others; "{of}" takes a setting). ``brackets``: the law interpolates, so the reading beyond each end of the range enters, too, and
+    the ends need only be bracketed.
     """
 
     name: str
@@ -95,6 +97,8 @@ class Law:
     gives: tuple[str, ...] = ()
     takes_bounds: bool = False
     takes_repeats: bool = False
+    brackets: bool = False
+    statistic: str = ""
     version: int = 1
 
     @property

@@ -80,7 +80,7 @@ def complete_settings(law: Law, said: Mapping[str, str]) -> dict[str, str]:
             options = f"; one of: {', '.join(setting.choices)}" if setting.choices else ""
             raise DocumentError(
                 f"the law {law.name} needs to be told {setting.name}: {setting.what}",
-                hint=f"say --set {setting.name}=...{options}",
+                hint=f"say --set {name}=...{options}",
             )
         found[setting.name] = _allowed(setting, text)
     return found
@@ -107,7 +107,7 @@ def typed_settings(
         if setting.choices or setting.is_text or text == "":
             typed[setting.name] = text
         else:
-            typed[setting.name] = _number(setting, text, _unit_of(setting, axis_unit, value_unit))
+            typed[setting.name] = number_in(setting.name, text, _unit_of(setting, axis_unit, value_unit))
     return typed
 
 
@@ -121,19 +121,17 @@ def _unit_of(setting: Setting, axis_unit: str, value_unit: str) -> str:
     return setting.unit
 
 
-def _number(setting: Setting, text: str, unit: str) -> float:
-    hint = f"write it as {setting.name}=... {unit}".rstrip()
+def number_in(name: str, text: str, unit: str) -> float:
+    """Return a setting that is a number with its unit, in ``unit``; DocumentError where it has none or another."""
+    hint = f"write it as {name}=... {unit}".rstrip()
     try:
         if unit in ("", "1"):
-            number = (
-                parse_number(text.removesuffix("%").strip()) if setting.unit == "" else parse_number(text)
-            )
-            return float(number)
+            return float(parse_number(text.removesuffix("%").strip()))
         quantity = parse_quantity(text)
         target = parse_unit(unit)
         if not compatible(quantity.unit, target):
-            raise DocumentError(f"{setting.name}={text}: {quantity.unit} is not {unit}", hint=hint)
+            raise DocumentError(f"{name}={text}: {quantity.unit} is not {unit}", hint=hint)
         return float(convert(float(quantity.value), quantity.unit, target))
     except (UnitError, ValueError) as error:
         message = error.message if isinstance(error, UnitError) else str(error)
-        raise DocumentError(f"{setting.name}={text}: {message}", hint=hint) from None
+        raise DocumentError(f"{name}={text}: {message}", hint=hint) from None

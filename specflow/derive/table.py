@@ -109,7 +109,9 @@ def derive_table(request: Request) -> Derived:
     axes = _axes(request, rows, over)
     apart = {*axes, *rows.told_apart}
     found = _Gathered()
-    for group in grouped_rows(rows.conditions, rows.items, np.arange(rows.size), apart):
+    every = np.arange(rows.size)
+    each = request.law.over == "each"
+    for group in [every] if each else grouped_rows(rows.conditions, rows.items, every, apart):
         _add_group(found, request, rows, axes, over, group)
     if not found.outcomes:
         _refuse_all(request, found)
@@ -146,9 +148,12 @@ def _add_group(
     over: SaidRange | None,
     group: Rows,
 ) -> None:
-    words = rows.words(group[0], {*axes, *rows.told_apart})
+    if not len(group):
+        return
+    apart = {*axes, *rows.told_apart}
+    words = rows.words(int(group[0]), apart)
     try:
-        taken, gap = _taken(rows, axes, over, group)
+        taken, gap = _taken(request.law, rows, axes, over, group)
         outcome = request.law.function(_samples(request, rows, axes, over, taken))
         _check_unit(request, outcome)
     except (CalculationError, UnitError) as error:
@@ -169,10 +174,12 @@ def _add_group(
 
 
 def _taken(
-    rows: Joined, axes: Mapping[str, Floats], over: SaidRange | None, group: Rows
+    law: Law, rows: Joined, axes: Mapping[str, Floats], over: SaidRange | None, group: Rows
 ) -> tuple[Rows, float]:
     """Return the rows of a group that the law reads, ascending along its range, and the largest gap."""
     has_value = rows.has_value[group]
+    if law.over == "each":
+        return group[has_value], 0.0
     if over is None:
         if not has_value.all():
             raise CalculationError(
@@ -181,7 +188,7 @@ def _taken(
             )
         return group, 0.0
     along = axes[over.dimension][group]
-    covered = covered_rows(along, has_value, over.range, over.dimension, over.unit)
+    covered = covered_rows(along, has_value, over.range, over.dimension, over.unit, brackets=law.brackets)
     return group[covered.rows], covered.largest_gap
 
 

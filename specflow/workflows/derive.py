@@ -9,7 +9,7 @@ from specflow.changes import diff
 from specflow.derive import LAW_BY_NAME, LAWS, Derived, Law, Request, Role, complete_settings, derive_table
 from specflow.errors import DocumentError
 from specflow.exchange import digest
-from specflow.importers.measured.document import content_digest
+from specflow.limits.tree import side_of
 from specflow.model.base import Document, code_key
 from specflow.model.derivation import Derivation, InputColumn, SettingSaid
 from specflow.model.evidence import EvidenceTable, Supersession, ValueColumn, Withdrawal
@@ -18,12 +18,10 @@ from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Snapshot
 from specflow.parameters import Dictionary
 from specflow.store import ProjectStore
+from specflow.store.columns import pack
 from specflow.workflows.evaluate_project import project_dictionary
 from specflow.workflows.numbering import next_number
 from specflow.workflows.subjects import not_found
-
-#: Statistics that say how a law came to its number, where the result is the parameter that was recorded.
-_STATISTIC = {"worst": "worst", "percentile": "percentile", "ripple": "peak-to-peak"}
 
 
 @dataclass(frozen=True, slots=True)
@@ -262,27 +260,68 @@ def _column_named(
 
 
 def _quantity(
-    snapshot: Snapshot, dictionary: Dictionary, law: Law, options: DeriveOptions, first: Role
+    snapshot: Snapshot,
+    dictionary: Dictionary,
+    law: Law,
+    options: DeriveOptions,
+    settings: Mapping[str, str],
+    first: Role,
 ) -> QuantityIdentity:
     """Return the quantity that the result is of: as said, as the requirement has it, or that of the column read."""
+    own = next(one.quantity for one in first.table.values if one.name == first.column)
     if options.requirement:
         requirement = snapshot.find(Requirement, options.requirement)
         if requirement is None:
             raise not_found("requirement", options.requirement, [one.id for one in snapshot.requirements])
-        return requirement.quantity
-    own = next(one.quantity for one in first.table.values if one.name == first.column)
+        quantity = requirement.quantity
+        if (
+            code_key(quantity.parameter) == code_key(own.parameter)
+            and law.statistic
+            and not quantity.statistic
+        ):
+            _refuse_hidden(requirement, dictionary, law, settings)
+        return quantity
     key = dictionary.resolve(options.gives).key if options.gives else own.parameter
-    same = code_key(key) == code_key(own.parameter)
-    default = _STATISTIC.get(law.name, "") if same or law.name == "ripple" else ""
     parameter = dictionary.get(key)
-    if parameter is None or default not in parameter.statistics:
-        default = ""
+    if parameter is None:
+        raise DocumentError(f"{key} is no known parameter", hint="say --gives PARAMETER")
+    same = code_key(key) == code_key(own.parameter)
+    named = law.statistic.format(**settings) if law.statistic else (own.statistic if same else "")
+    if not same and named not in parameter.statistics:
+        named = ""
     return QuantityIdentity(
         parameter=key,
         plane=options.plane or own.plane,
-        statistic=options.statistic or default,
+        statistic=options.statistic or named,
         bandwidth_hz=own.bandwidth_hz if same else None,
         polarisation=options.polarisation or own.polarisation,
+    )
+
+
+def _refuse_hidden(
+    requirement: Requirement, dictionary: Dictionary, law: Law, settings: Mapping[str, str]
+) -> None:
+    """Refuse to call a mean, or the wrong end, a reading of a requirement that names no statistic."""
+    one_side = side_of(requirement.limit.tree)
+    sides = {Side.LOWER, Side.UPPER} if one_side is None else {one_side}
+    parameter = dictionary.get(requirement.quantity.parameter)
+    better = parameter.better if parameter is not None else Better.NEITHER
+    said = settings.get("side", "")
+    if said == "as the parameter":
+        said = {Better.HIGHER: "lowest", Better.LOWER: "highest"}.get(better, "both")
+    enough = {"lowest": {Side.LOWER}, "highest": {Side.UPPER}, "both": {Side.LOWER, Side.UPPER}}.get(
+        said, set()
+    )
+    if law.name == "worst" and sides <= enough:
+        return
+    if law.name == "worst":
+        raise DocumentError(
+            f"{requirement.id} ({requirement.limit.text}) is not shown by the {said} reading alone",
+            hint="say --set side=both; or leave it to the raw readings, which are judged point by point",
+        )
+    raise DocumentError(
+        f"{requirement.id} names no statistic, so it holds for every reading; the {law.name} does not show that",
+        hint="name the statistic in the requirement, or derive the worst",
     )
 
 
@@ -339,7 +378,8 @@ def _table(
             "revision": 1,
         }
     )
-    content = [content_digest(table, derived.columns), told, list(derivation.digests), derivation.law_version]
+    arrays = [[one.role, one.name, one.unit, one.labels, one.sha256] for one in pack(table, derived.columns)]
+    content = [arrays, told, list(derivation.digests), derivation.law_version]
     return table.model_copy(update={"digest": digest(content)})
 
 

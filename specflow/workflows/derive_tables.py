@@ -57,6 +57,13 @@ def _intro(preview: DerivePreview) -> str:
     return "\n· ".join([*lines, *derived.notes])
 
 
+def _uncertainty(preview: DerivePreview) -> str:
+    if preview.derived.u_rule:
+        return preview.derived.u_rule
+    known = any(role.columns.values[role.column].u is not None for role in preview.request.roles)
+    return "none; this law knows no rule for it" if known else "none; the readings have none"
+
+
 def _figure(low: float, high: float, unit: str) -> str:
     value = format_value(low, decimals=4) if low == high else f"{format_value(low)} to {format_value(high)}"
     return value if unit in ("", "1") else f"{value} {unit}"
