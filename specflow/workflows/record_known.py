@@ -119,6 +119,7 @@ def _file(
         received_from=f"budget {known.budget.id} revision {known.budget.revision}",
         kind=FileKind.REPORT,
         note=f"made from {', '.join(found.tables)}",
+        kept=True,
     )
 
 
