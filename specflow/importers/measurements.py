@@ -12,6 +12,7 @@ from specflow.importers.measured.evidence import collected, read_table
 from specflow.importers.measured.located import GivenMappings, LocatedTable, Mappings, locate_tables
 from specflow.importers.measured.mapping import read_mappings, write_mapping
 from specflow.importers.measured.meaning import read_meanings
+from specflow.importers.measured.network import read_network_tables
 from specflow.importers.measured.proposal import Proposal, propose
 from specflow.importers.measured.result import (
     ColumnReading,
@@ -20,7 +21,8 @@ from specflow.importers.measured.result import (
     Question,
     Role,
 )
-from specflow.importers.readers import Grid, GridFile, open_grids, sheet
+from specflow.importers.readers import FileFingerprint, Grid, GridFile, open_grids, read_source, sheet
+from specflow.importers.readers.touchstone import is_touchstone, read_network
 from specflow.model.evidence import EvidenceFile, FileKind, HowRead
 from specflow.model.finding import Finding, Severity
 from specflow.model.origin import Origin
@@ -62,8 +64,10 @@ def read_measurements(
     context = Context(snapshot, dictionary)
     given = GivenMappings(read_mappings(mapping, mapping_name) if mapping else (), mapping_name)
     mappings = Mappings(given, context)
-    file = open_grids(path)
     person = dict(stated or {})
+    if is_touchstone(Path(path).name):
+        return _of_network(path, context, given, person)
+    file = open_grids(path)
     skipped: list[str] = []
     findings: list[Finding] = []
     located: list[LocatedTable] = []
@@ -74,13 +78,25 @@ def read_measurements(
         findings += [_finding(grid, note) for note in grid.notes]
         if found.outside:
             findings.append(_outside(grid, found.outside))
-    findings += [_unused(file, layout, mapping_name) for layout in mappings.unused()]
+    findings += [_unused(file.fingerprint.name, layout, mapping_name) for layout in mappings.unused()]
     tables = [_read(one, context, person, include_hidden_rows) for one in located]
     findings += [finding for table in tables for finding in table.findings]
     if not located:
         findings.append(_nothing(file, skipped))
     proposal = _proposal(located, context, person)
-    return Measurements(_file(file, tables, person), tuple(tables), tuple(findings), tuple(skipped), proposal)
+    document = _file(file.fingerprint, tables, person)
+    return Measurements(document, tuple(tables), tuple(findings), tuple(skipped), proposal)
+
+
+def _of_network(
+    path: str | Path, context: Context, given: GivenMappings, person: Mapping[str, str]
+) -> Measurements:
+    """A Touchstone file: it has no cells to be understood, but entries, comments and doubts."""
+    network = read_network(read_source(Path(path)))
+    read = read_network_tables(network, context, given, person, IMPORTER_VERSION)
+    file = _file(network.fingerprint, read.tables, person)
+    unused = [_unused(network.fingerprint.name, layout, given.name) for layout in read.unused_layouts]
+    return Measurements(file, read.tables, (*read.findings, *unused), (), read.proposal)
 
 
 def _read(
@@ -122,15 +138,15 @@ def _chosen(file: GridFile, sheets: Sequence[str], skipped: list[str]) -> list[G
     return [grid for grid in file if not grid.hidden]
 
 
-def _file(file: GridFile, tables: Sequence[MeasuredTable], person: Mapping[str, str]) -> EvidenceFile:
+def _file(file: FileFingerprint, tables: Sequence[MeasuredTable], person: Mapping[str, str]) -> EvidenceFile:
     """The file as a document; it is a simulation when all its tables are analyses."""
     methods = {table.document.method for table in tables if table.document is not None}
     simulated = bool(methods) and methods <= set(_SIMULATED)
     return EvidenceFile(
         id=PROVISIONAL_FILE,
-        name=file.fingerprint.name,
-        sha256=file.fingerprint.sha256,
-        size=file.fingerprint.size,
+        name=file.name,
+        sha256=file.sha256,
+        size=file.size,
         received_at="",
         received_from=person.get("performer", ""),
         kind=FileKind.SIMULATION if simulated else FileKind.MEASUREMENT,
@@ -159,11 +175,11 @@ def _nothing(file: GridFile, skipped: Sequence[str]) -> Finding:
     )
 
 
-def _unused(file: GridFile, layout: str, mapping_name: str) -> Finding:
+def _unused(file: str, layout: str, mapping_name: str) -> Finding:
     return Finding(
         rule="attach-layout-not-met",
         severity=Severity.WARNING,
-        subject=file.fingerprint.name,
+        subject=file,
         subject_kind="file",
         message=f"{mapping_name} settles the layout {layout}, which no table of this file has",
         why="a layout is known by its headers, their units and their order, and by the sheet",

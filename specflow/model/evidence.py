@@ -72,6 +72,7 @@ class ValueColumn(Document):
 
     ``unit`` is the unit as recorded (values are kept as written); ``unit_from`` says where it was found.
     ``uncertainty_from`` says where u came from: column, register line, mapping, or "" when there is none.
+    ``lines_below`` is how many lines below the first of its row the value stands, in files whose rows take several.
     """
 
     name: str
@@ -84,6 +85,7 @@ class ValueColumn(Document):
     uncertainty_from: str = ""
     coverage_factor: float | None = None
     conversions: tuple[str, ...] = ()
+    lines_below: int = 0
 
 
 class ConditionColumn(Document):

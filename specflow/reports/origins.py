@@ -49,11 +49,12 @@ class OriginFinder:
             return None
         table = self.table(record.table)
         file = self._snapshot.find(EvidenceFile, table.file)
+        below = self.column(record).lines_below
         return Origin(
             file=file.name if file else table.file,
             sha256=file.sha256 if file else "",
             sheet=table.sheet,
-            row=int(self.columns(record.table).source_rows[record.row]),
+            row=int(self.columns(record.table).source_rows[record.row]) + below,
             column=self._column_number(record),
         )
 

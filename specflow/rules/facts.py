@@ -175,8 +175,9 @@ class Facts:
         if record is None or table is None:
             return None
         columns = self.columns(record.table)
-        column = next((one.column for one in table.values if one.name == record.column), None)
-        row = int(columns.source_rows[record.row])
+        value = next((one for one in table.values if one.name == record.column), None)
+        column = value.column if value else None
+        row = int(columns.source_rows[record.row]) + (value.lines_below if value else 0)
         if SOURCE_COLUMN in columns.extra:  # values of several columns were stacked
             column = column_number(columns.extra[SOURCE_COLUMN].word(record.row))
         return self.place(table).model_copy(update={"row": row, "column": column})

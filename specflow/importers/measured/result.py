@@ -6,6 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field
 from enum import StrEnum
 
+from specflow.importers.measured.derivation_plan import DerivationPlan
 from specflow.model.evidence import EvidenceColumns, EvidenceFile, EvidenceTable, LeftOut
 from specflow.model.finding import Finding
 
@@ -59,7 +60,8 @@ class MeasuredTable:
     hold something which cannot be evidence; long runs of one reason are one entry, ``rejected_cells`` counts the cells.
     ``blank`` counts cells without a result, by reason. ``notes`` tell what was done on the way; ``findings`` doubt
     readings that were taken as they stand. ``mapping`` is the
-    TOML of the mapping that was used, ``mapping_from`` says where it came from ("" when none was needed).
+    TOML of the mapping that was used, ``mapping_from`` says where it came from ("" when none was needed). ``plans`` are
+    laws to be applied to it once it is stored.
     """
 
     sheet: str
@@ -79,6 +81,7 @@ class MeasuredTable:
     mapping_from: str = ""
     document: EvidenceTable | None = None
     columns: EvidenceColumns | None = None
+    plans: tuple[DerivationPlan, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)

@@ -85,7 +85,7 @@ class Told:
 def read_comments(comments: Sequence[Comment], shape: Shape) -> Told:
     """Read the comments of a file."""
     doubts = [*_column_doubts(comments, shape), *_axis_doubts(comments, shape)]
-    remarks: list[Remark] = []
+    remarks = list(_other_entry(comments, shape))
     impedances = _impedances(comments, shape, remarks)
     names = _port_names(comments, shape.ports)
     return Told(tuple(doubts), tuple(remarks), names, impedances)
@@ -127,10 +127,7 @@ def _column_doubts(comments: Sequence[Comment], shape: Shape) -> Iterator[Doubt]
         if set(listed) <= set(wanted) and listed != [one for one in wanted if one in listed]:
             has, says = _names(wanted, shape.parameter), _names(listed, shape.parameter)
             what = f"the comment names the columns {says}; by the format they are {has}"
-            yield Doubt(DoubtKind.COLUMN_ORDER, line, what)
-        elif shape.ports == 1 and listed[0] != (1, 1):
-            what = f"the comment names the column {_names(listed, shape.parameter)}; by the format it is S11"
-            yield Doubt(DoubtKind.COLUMN_ORDER, line, what)
+            yield Doubt(DoubtKind.COLUMN_ORDER, line, what, tuple(listed))
         meant = _format_named(text)
         if meant is not None and meant is not shape.pair_format:
             first, second = meant.parts
@@ -139,6 +136,18 @@ def _column_doubts(comments: Sequence[Comment], shape: Shape) -> Iterator[Doubt]
                 f"the option line says {shape.pair_format.value}"
             )
             yield Doubt(DoubtKind.PAIR_FORMAT, line, what)
+
+
+def _other_entry(comments: Sequence[Comment], shape: Shape) -> Iterator[Remark]:
+    """Say where the header of a one-port names another entry than S11: the analyser measured that port."""
+    for comment in comments:
+        found = mentions(comment.text, shape.parameter)
+        is_header = len(set(found)) == 1 and _FREQUENCY.search(comment.text)
+        if shape.ports == 1 and is_header and found[0] != (1, 1):
+            says = _names(found[:1], shape.parameter)
+            yield Remark(
+                comment.line, f"the comment calls the one entry {says}; it is kept as {shape.parameter}11"
+            )
 
 
 def _names(entries: Sequence[tuple[int, int]], parameter: str) -> str:
@@ -220,7 +229,9 @@ def _impedances(comments: Sequence[Comment], shape: Shape, remarks: list[Remark]
 def _complex_list(block: list[float], wanted: int) -> Complexes:
     """Impedances from ``wanted`` real numbers, or as many pairs of real and imaginary part."""
     pairs = np.asarray(block, np.float64).reshape(wanted, -1)
-    value: Complexes = pairs[:, 0] + 1j * (pairs[:, 1] if pairs.shape[1] > 1 else 0.0)
+    value = np.zeros(wanted, np.complex128)
+    value.real = pairs[:, 0]
+    value.imag = pairs[:, 1] if pairs.shape[1] > 1 else 0.0
     return value
 
 

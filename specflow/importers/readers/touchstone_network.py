@@ -61,11 +61,15 @@ class DoubtKind(StrEnum):
 
 @dataclass(frozen=True, slots=True)
 class Doubt:
-    """Something in the file that speaks against the plain reading; a person must settle it."""
+    """Something in the file that speaks against the plain reading; a person must settle it.
+
+    ``named`` are the entries (to, from; counted from 1) in the order of the comment, where that is the doubt.
+    """
 
     kind: DoubtKind
     line: int
     what: str
+    named: tuple[tuple[int, int], ...] = ()
 
 
 @dataclass(frozen=True, slots=True)

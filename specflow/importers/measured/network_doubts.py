@@ -1,0 +1,164 @@
+"""What is doubtful in a network file, settled by what was said: x axis, order of the columns, format of the pairs."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field, replace
+
+import numpy as np
+
+from specflow.conditions import Comparison, find_dimension
+from specflow.errors import UnitError
+from specflow.importers.measured.result import Question
+from specflow.importers.readers.touchstone_matrix import complex_of
+from specflow.importers.readers.touchstone_network import Doubt, DoubtKind, NetworkFile, PairFormat
+from specflow.units import compatible, format_unit, parse_unit
+
+#: What may be said of a network, beside what may be said of any table and "port N".
+NETWORK_KEYS = ("x axis", "column order", "format", "derive")
+
+_REMEDIES = {
+    DoubtKind.X_AXIS: '--state "x axis=frequency" if it is one, else its condition: "x axis=input_level in dBm"',
+    DoubtKind.COLUMN_ORDER: '--state "column order=format" if the file keeps to the format, "column order=comment" if '
+    "the comment is right",
+    DoubtKind.PAIR_FORMAT: "--state format=DB, MA or RI, as the numbers are meant",
+}
+
+
+@dataclass(frozen=True, slots=True)
+class Axis:
+    """The condition that the rows are over, its unit, and who said so."""
+
+    dimension: str
+    unit: str
+    by: str
+
+
+@dataclass
+class SettledNetwork:
+    """A network with what was settled, its axis, open questions, and what was done in words."""
+
+    network: NetworkFile
+    axis: Axis
+    questions: list[Question] = field(default_factory=list)
+    notes: list[str] = field(default_factory=list)
+
+
+def settle(network: NetworkFile, said: Mapping[str, str]) -> SettledNetwork:
+    """Settle the doubts of a network by what was said ("x axis", "column order", "format"); ask about the rest."""
+    settled = SettledNetwork(network, Axis("frequency", network.axis_unit, "the option line"))
+    text = said.get("format", "")
+    if text:
+        _settle_format(settled, text)
+    order = said.get("column order", "")
+    if order:
+        _settle_order(settled, order)
+    axis = said.get("x axis", "")
+    if axis:
+        _settle_axis(settled, axis)
+    settled_kinds = {
+        kind
+        for kind, words in (
+            (DoubtKind.X_AXIS, axis),
+            (DoubtKind.COLUMN_ORDER, order),
+            (DoubtKind.PAIR_FORMAT, text),
+        )
+        if words
+    }
+    settled.questions += [_question(one) for one in network.doubts if one.kind not in settled_kinds]
+    return settled
+
+
+def _question(doubt: Doubt) -> Question:
+    return Question(doubt.kind.value, f"line {doubt.line}", doubt.what, _REMEDIES[doubt.kind])
+
+
+def _settle_format(settled: SettledNetwork, text: str) -> None:
+    network = settled.network
+    known = {one.value.casefold(): one for one in PairFormat}
+    meant = known.get(text.strip().casefold())
+    if meant is None:
+        settled.questions.append(Question("format", "", f"{text!r} is no format", "say DB, MA or RI"))
+        return
+    if meant is network.pair_format:
+        return
+    if network.parameter != "S":
+        what = f"another format cannot be stated for {network.parameter} parameters"
+        settled.questions.append(Question("format", "", what, "mend the option line of the file"))
+        return
+    recorded = complex_of(network.first, network.second, meant)
+    settled.notes.append(
+        f"the pairs were read as {meant.value}, as stated; the option line says {network.pair_format}"
+    )
+    settled.network = replace(network, pair_format=meant, recorded=recorded, s=recorded)
+
+
+def _settle_order(settled: SettledNetwork, text: str) -> None:
+    word = text.strip().casefold()
+    if word in ("format", "as the format", "by the format"):
+        settled.notes.append("the columns stand in the order of the format, as stated")
+        return
+    network = settled.network
+    doubt = next((one for one in network.doubts if one.kind is DoubtKind.COLUMN_ORDER), None)
+    complete = doubt is not None and len(doubt.named) == network.ports**2 and network.matrix_format == "Full"
+    if word not in ("comment", "as the comment", "by the comment") or doubt is None or not complete:
+        what = f"{text!r} does not settle the order of the columns"
+        remedy = _REMEDIES[DoubtKind.COLUMN_ORDER]
+        settled.questions.append(Question("column order", "", what, remedy))
+        return
+    if network.parameter != "S":
+        what = f"another order cannot be stated for {network.parameter} parameters"
+        settled.questions.append(
+            Question("column order", "", what, "mend the comment or export S parameters")
+        )
+        return
+    settled.network = _reordered(network, doubt.named)
+    settled.notes.append(
+        "the columns stand in the order of the comment, as stated, not in that of the format"
+    )
+
+
+def _reordered(network: NetworkFile, named: tuple[tuple[int, int], ...]) -> NetworkFile:
+    """The network with its k-th pair taken as the k-th entry that was named."""
+    pairs = np.empty(network.pair_places.shape, np.int64)
+    for pair, (i, j) in enumerate(named):
+        pairs[i - 1, j - 1] = pair
+    by_pair = {int(network.pair_places[i, j]): (i, j) for i, j in np.ndindex(*pairs.shape)}
+    from_rows = np.empty(pairs.shape, np.int64)
+    from_columns = np.empty(pairs.shape, np.int64)
+    for i, j in np.ndindex(*pairs.shape):
+        from_rows[i, j], from_columns[i, j] = by_pair[1 + 2 * int(pairs[i, j])]
+    return replace(
+        network,
+        first=network.first[:, from_rows, from_columns],
+        second=network.second[:, from_rows, from_columns],
+        recorded=network.recorded[:, from_rows, from_columns],
+        s=network.s[:, from_rows, from_columns],
+        pair_places=1 + 2 * pairs,
+    )
+
+
+def _settle_axis(settled: SettledNetwork, text: str) -> None:
+    name, _, unit = text.strip().partition(" in ")
+    if name.strip().casefold() in ("frequency", "freq"):
+        settled.notes.append("the x axis is frequency, as stated")
+        return
+    known = find_dimension(name)
+    if known is None or known.comparison is Comparison.TEXT:
+        what = f"{name!r} is no condition that an axis can have"
+        settled.questions.append(Question("x axis", "", what, _REMEDIES[DoubtKind.X_AXIS]))
+        return
+    unit = unit.strip() or known.unit
+    try:
+        fits = compatible(parse_unit(unit or "1"), parse_unit(known.unit or "1"))
+    except UnitError:
+        fits = False
+    if not fits:
+        what = f"{unit!r} is no unit of {known.title}"
+        settled.questions.append(Question("x axis", "", what, f"say it in {known.unit}"))
+        return
+    settled.axis = Axis(known.name, format_unit(parse_unit(unit)) if unit else "", "stated by the person")
+    settled.notes.append(
+        f"the first number of each row is {known.title} in {unit}, as stated, and not the frequency in "
+        f"{settled.network.axis_unit} of the option line"
+    )
