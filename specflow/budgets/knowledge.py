@@ -9,7 +9,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Collection, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from enum import IntEnum
 
 import numpy as np
@@ -86,6 +86,18 @@ class Knowledge:
     items: tuple[str, ...]
     source: Codes
     sources: tuple[str, ...]
+
+    def at(self, kept: NDArray[np.bool_]) -> Knowledge:
+        """Return some of the readings."""
+        return replace(
+            self,
+            place=self.place[kept],
+            value=self.value[kept],
+            u=self.u[kept],
+            rank=self.rank[kept],
+            item=self.item[kept],
+            source=self.source[kept],
+        )
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -164,6 +164,7 @@ class BudgetLine(Document):
     ``shared`` says whether the N elements of a position move together (common) or each by itself (per element).
     ``growth`` is an allowance that worsens the figure; none unless it is asked for. ``sideband`` is that of a mixer's
     noise figure: single, double, or "both", a double-sideband figure where the wanted signal is in both sidebands.
+    ``plane`` and ``statistic`` say what the figure is of, as requirements do, "" for not stated.
     """
 
     position: int
@@ -177,6 +178,8 @@ class BudgetLine(Document):
     shared: Literal["common", "per element"] = "common"
     growth: float = Field(default=0.0, ge=0)
     sideband: Literal["", "SSB", "DSB", "both"] = ""
+    plane: str = ""
+    statistic: str = ""
     maturity: Maturity = Maturity.ESTIMATED
     source: str = ""
 

@@ -24,12 +24,12 @@ from specflow.model.block import Block
 from specflow.model.budget import Allocation, Budget, Reserve
 from specflow.model.change import Change
 from specflow.model.limit import Limit
-from specflow.model.parameter import QuantityIdentity
 from specflow.model.requirement import Requirement, Source
 from specflow.model.snapshot import Snapshot
 from specflow.parameters import Dictionary
 from specflow.store import ProjectStore
 from specflow.workflows.allocated_limit import limit_text_of
+from specflow.workflows.allocated_quantity import quantity_of
 from specflow.workflows.evaluate_project import project_dictionary
 from specflow.workflows.show_budget import budget_named
 
@@ -361,6 +361,7 @@ def _new_child(one: Allotment, parents: Sequence[str], probe: Probe, title: str)
     block = snapshot.find(Block, one.block)
     assert block is not None  # checked when the budget was read
     points = probe.chain.required.points
+    quantity = quantity_of(one.key, probe, block)
     return Requirement(
         id=_free_id(snapshot, f"{block.id}-{one.parameter.upper().replace('_', '-')}"),
         title=f"{title} of {block.name}",
@@ -369,7 +370,7 @@ def _new_child(one: Allotment, parents: Sequence[str], probe: Probe, title: str)
         tier=block.tier,
         owner=block.owner,
         block=block.id,
-        quantity=QuantityIdentity(parameter=one.parameter),
+        quantity=quantity,
         limit=_limit_of(one, probe),
         conditions=points.conditions.id if points is not None else None,
         rationale=one.words,

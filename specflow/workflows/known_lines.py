@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import date
 
 import numpy as np
@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 
 from specflow.budgets.chain import Chain, ReadLine
 from specflow.budgets.knowledge import Knowledge, Rank
-from specflow.conditions import Points, compile_points, match, unmap_columns
+from specflow.conditions import compile_points, match, unmap_columns
 from specflow.errors import ConditionsError, ExpressionError, UnitError
 from specflow.limits import evaluate_condition, parse_condition
 from specflow.model.base import code_key
@@ -25,6 +25,8 @@ from specflow.parameters import Dictionary
 from specflow.units import convert, converter, parse_unit, tolerance_unit
 from specflow.verification.map_choice import MapChoice
 from specflow.verification.standing import ACCEPTED, StandingRegister
+from specflow.workflows.known_pairs import everywhere, paired
+from specflow.workflows.known_routes import GainAt, Route, as_noise, route_of
 
 Floats = NDArray[np.float64]
 Rows = NDArray[np.intp]
@@ -32,7 +34,6 @@ Rows = NDArray[np.intp]
 COMPOSITE_MODEL = "budget "
 _REPRESENTATIVE = (HardwareType.QUALIFICATION, HardwareType.PRODUCTION)
 _OBSERVED = (Method.TEST, Method.DEMONSTRATION)
-_LOSSES = ("insertion_loss", "conversion_loss", "attenuation")
 
 
 @dataclass(frozen=True, slots=True)
@@ -59,12 +60,11 @@ def gather_knowledge(
     reader = _Reader(chain, snapshot, dictionary, children, as_of)
     found: list[Knowledge] = []
     tables: dict[str, None] = {}
-    for read in chain.lines:
-        for table, column in reader.columns_of(read):
-            knowledge = reader.knowledge(read, table, column)
-            if knowledge is not None and len(knowledge.place):
-                found.append(knowledge)
-                tables[table.id] = None
+    # Gains first: intercepts recorded at the other port go through them.
+    for read in sorted(chain.lines, key=lambda one: one.role.figure != "gain"):
+        for knowledge, table in reader.of_line(read, tuple(_joined(found))):
+            found.append(knowledge)
+            tables[table.id] = None
     return Gathered(tuple(_joined(found)), tuple(tables), tuple(dict.fromkeys(reader.notes)))
 
 
@@ -89,25 +89,51 @@ class _Reader:
         self.loaded: dict[str, EvidenceColumns] = {}
         self.notes: list[str] = []
 
-    def columns_of(self, read: ReadLine) -> Iterator[tuple[EvidenceTable, ValueColumn]]:
-        """Yield the value columns that record the parameter of a line on its block."""
+    def of_line(
+        self, read: ReadLine, known: Sequence[Knowledge]
+    ) -> Iterator[tuple[Knowledge, EvidenceTable]]:
+        """Yield what is recorded of a line; what comes by a detour only where nothing says it straight."""
+        columns = list(self._columns_of(read))
+        straight: set[int] = set()
+        for is_direct in (True, False):
+            for table, column, route in columns:
+                if route.is_direct is not is_direct:
+                    continue
+                one = self.knowledge(read, table, column, route, known)
+                if one is not None and not is_direct:
+                    one = one.at(np.array([place not in straight for place in one.place.tolist()], bool))
+                if one is not None and len(one.place):
+                    yield one, table
+                    straight |= set(one.place.tolist()) if is_direct else set()
+
+    def _columns_of(self, read: ReadLine) -> Iterator[tuple[EvidenceTable, ValueColumn, Route]]:
+        """Yield the value columns that record what a line states of its block, with the way there."""
         for table in self.snapshot.tables_of_block.get(code_key(read.line.block), ()):
             for column in table.values:
-                if not _records(column, read):
+                route = route_of(column, read.line)
+                if route is None:
                     continue
-                unlike = self._unlike(read, column)
+                unlike = self._unlike(read, column, route)
                 if unlike:
                     self.notes.append(f"{table.id} {column.name} is left out: another {unlike} than required")
-                else:
-                    yield table, column
+                    continue
+                if read.line.sideband and read.role.figure == "noise_figure":
+                    self.notes.append(
+                        f"{table.id} {column.name} does not say its sideband; it is taken as "
+                        f"{read.line.sideband}, as the line states"
+                    )
+                yield table, column, route
 
-    def _unlike(self, read: ReadLine, column: ValueColumn) -> str:
-        """Name what the requirement on the block and the column both state, and differently."""
+    def _unlike(self, read: ReadLine, column: ValueColumn, route: Route) -> str:
+        """Name what the line or the requirement on the block and the column both state, and differently."""
         child = self._child(read)
-        if child is None:
-            return ""
         for part in ("plane", "statistic", "polarisation"):
-            wanted, found = getattr(child.quantity, part), getattr(column.quantity, part)
+            if part == "plane" and route.gain:
+                continue  # the other port is what the route is for
+            wanted = getattr(read.line, part, "") or (
+                getattr(child.quantity, part) if child is not None else ""
+            )
+            found = getattr(column.quantity, part)
             if wanted and found and code_key(wanted) != code_key(found):
                 return part
         return ""
@@ -119,10 +145,17 @@ class _Reader:
             self.loaded[key] = next(iter(self.snapshot.load_columns([table.id]).values()))
         return self.loaded[key]
 
-    def knowledge(self, read: ReadLine, table: EvidenceTable, column: ValueColumn) -> Knowledge | None:
-        """Return what one column says of a line."""
+    def knowledge(
+        self,
+        read: ReadLine,
+        table: EvidenceTable,
+        column: ValueColumn,
+        route: Route,
+        known: Sequence[Knowledge],
+    ) -> Knowledge | None:
+        """Return what one column says of a line; ``known`` is what is known of the gain that a route goes through."""
         arrays = self.load(table)
-        values = self._values(read, table, column, arrays)
+        values = self._values(read, table, column, arrays, route)
         if values is None:
             return None
         value, u, usable = values
@@ -132,7 +165,7 @@ class _Reader:
         places, rows = places[kept], rows[kept]
         items, codes = self._items(arrays)
         ranks = self._ranks(table, arrays, items)
-        return Knowledge(
+        found = Knowledge(
             read.line.position,
             read.line.parameter,
             places,
@@ -142,22 +175,76 @@ class _Reader:
             codes[rows],
             items,
             np.zeros(len(rows), np.intp),
-            (f"{table.id} {column.name}",),
+            (f"{table.id} {column.name}{f' {route.words}' if route.words else ''}",),
+        )
+        return self._through_gain(read, table, found, rows, route, known) if route.gain else found
+
+    def _through_gain(
+        self,
+        read: ReadLine,
+        table: EvidenceTable,
+        found: Knowledge,
+        rows: Rows,
+        route: Route,
+        known: Sequence[Knowledge],
+    ) -> Knowledge | None:
+        """Return levels recorded at the other port of a block, taken through its gain at the same point."""
+        at = GainAt.of(self.chain, read.row, known)
+        if at is None:
+            self.notes.append(f"{found.sources[0]} is left out: the position has no gain to go through")
+            return None
+        gain, u, rank, words = at.at(found.place, [found.items[int(code)] for code in found.item])
+        recorded = self._gain_beside(table)
+        source = f"the gain of the block, {words}"
+        if recorded is not None:
+            beside = np.isfinite(recorded[0][rows])
+            gain, u = np.where(beside, recorded[0][rows], gain), np.where(beside, recorded[1][rows], u)
+            rank = np.where(beside, found.rank, rank)
+            source = "the gain recorded beside it" if beside.all() else source
+        back = converter(parse_unit("dBm"), parse_unit(read.line.unit))
+        return replace(
+            found,
+            value=np.asarray(back(found.value + route.gain * gain + route.offset_db)),
+            u=np.where(np.isnan(found.u), np.nan, np.hypot(found.u, np.nan_to_num(u))),
+            rank=np.minimum(found.rank, rank),
+            sources=(f"{found.sources[0]} ({source})",),
         )
 
+    def _gain_beside(self, table: EvidenceTable) -> tuple[Floats, Floats] | None:
+        """Return the gain in dB that a table records in the same rows, with its uncertainty; None where it does not."""
+        for column in table.values:
+            name = code_key(column.quantity.parameter)
+            if name not in ("gain", "insertion_loss") or not parse_unit(column.unit or "1").is_log:
+                continue
+            recorded = self.load(table).values[column.name]
+            sign = 1.0 if name == "gain" else -1.0
+            u = np.zeros(len(recorded.low)) if recorded.u is None else recorded.u
+            return sign * (recorded.low + recorded.high) / 2.0, u
+        return None
+
     def _values(
-        self, read: ReadLine, table: EvidenceTable, column: ValueColumn, arrays: EvidenceColumns
+        self,
+        read: ReadLine,
+        table: EvidenceTable,
+        column: ValueColumn,
+        arrays: EvidenceColumns,
+        route: Route,
     ) -> tuple[Floats, Floats, NDArray[np.bool_]] | None:
         recorded = arrays.values[column.name]
         parameter = self.dictionary.get(column.quantity.parameter)
         factor = parameter.log_factor if parameter is not None else None
-        source, target = parse_unit(column.unit or "1"), parse_unit(read.line.unit)
+        source, target = parse_unit(column.unit or "1"), parse_unit(route.unit or read.line.unit)
         try:
             step = converter(source, target, log_factor=factor)
             middle = (recorded.low + recorded.high) / 2.0
             usable = np.isfinite(middle)
-            value = step(np.where(usable, middle, 1.0)) * _sign(column, read)
+            value = step(np.where(usable, middle, 1.0)) * route.sign
             u = self._spread(recorded.u, source, target, middle)
+            if not route.is_direct and not route.gain:
+                value, u = as_noise(route, value, u)
+                unit = parse_unit("dB" if route.unit == "K" else "K")
+                value = converter(unit, parse_unit(read.line.unit))(value)
+                u = self._spread(u, unit, parse_unit(read.line.unit), middle)
         except UnitError as error:
             self.notes.append(f"{table.id} {column.name} is left out: {error.message}")
             return None
@@ -220,7 +307,7 @@ class _Reader:
         of_budget = self.chain.required.points
         size = self.chain.size
         if child is not None and own is None and child.conditions is None:
-            return _everywhere(size, recorded.size)
+            return everywhere(size, recorded.size)
         if own is not None and (of_budget is None or code_key(own.id) != code_key(of_budget.conditions.id)):
             assert child is not None
             points = compile_points(own)
@@ -229,12 +316,12 @@ class _Reader:
             found = match(points, places)
             if not len(found.record):
                 found = match(points, self.chain.required.columns)
-            return _paired(points, found.record, found.point, records, self.chain.own[read.row])
+            return paired(points, found.record, found.point, records, self.chain.own[read.row])
         if of_budget is None:
-            return _everywhere(size, recorded.size)
+            return everywhere(size, recorded.size)
         records = self._unmapped(self._map_of(read), recorded, table)
         every = np.arange(size, dtype=np.int32)
-        return _paired(of_budget, every, self.chain.required.point, records, self.chain.required.columns)
+        return paired(of_budget, every, self.chain.required.point, records, self.chain.required.columns)
 
     def _child(self, read: ReadLine) -> Requirement | None:
         for child in self.children:
@@ -259,71 +346,6 @@ class _Reader:
         except ConditionsError as error:
             self.notes.append(f"{table.id}: its conditions cannot be taken to the system's: {error.message}")
             return recorded
-
-
-def _records(column: ValueColumn, read: ReadLine) -> bool:
-    """Whether a column records what a line states: the same parameter, or a gain where it states a loss."""
-    found, wanted = code_key(column.quantity.parameter), code_key(read.line.parameter)
-    return found == wanted or _sign(column, read) < 0
-
-
-def _sign(column: ValueColumn, read: ReadLine) -> float:
-    """Return -1 for a gain recorded of what a line states as a loss (or the other way), in dB; else 1."""
-    found, wanted = code_key(column.quantity.parameter), code_key(read.line.parameter)
-    turned = (found == "gain" and wanted in _LOSSES) or (wanted == "gain" and found in _LOSSES)
-    return -1.0 if turned and parse_unit(column.unit or "1").is_log else 1.0
-
-
-def _everywhere(places: int, rows: int) -> tuple[Rows, Rows]:
-    return np.repeat(np.arange(places), rows), np.tile(np.arange(rows), places)
-
-
-def _paired(
-    points: Points,
-    place: NDArray[np.int32],
-    point: NDArray[np.int32] | Rows,
-    records: Columns,
-    columns: Columns,
-) -> tuple[Rows, Rows]:
-    """Join places and rows that serve the same required point; along a range, each place with its nearest rows."""
-    found = match(points, records)
-    if found.along is None:
-        order = np.argsort(point, kind="stable")
-        ordered = np.asarray(point)[order]
-        first = np.searchsorted(ordered, found.point, side="left")
-        count = np.searchsorted(ordered, found.point, side="right") - first
-        rows = np.repeat(found.record, count)
-        start = np.repeat(first - np.cumsum(count) + count, count)
-        return np.asarray(place)[order[start + np.arange(len(rows))]].astype(np.intp), rows.astype(np.intp)
-    return _along(points, place, np.asarray(point), found.record, found.point, found.along, columns)
-
-
-def _along(
-    points: Points,
-    place: NDArray[np.int32],
-    point: NDArray[np.int32],
-    record: NDArray[np.int32],
-    served: NDArray[np.int32],
-    along: Floats,
-    columns: Columns,
-) -> tuple[Rows, Rows]:
-    """Give each place of a range the rows that are nearest to it along the range, within the step that is required."""
-    name = points.range_dimension
-    step = points.step.get(name, np.inf)
-    at = columns.numeric[name]
-    places: list[int] = []
-    rows: list[int] = []
-    for one, here in zip(place.tolist(), point.tolist(), strict=True):
-        mine = np.flatnonzero(served == here)
-        if not len(mine):
-            continue
-        gap = np.abs(along[mine] - at[one])
-        least = float(gap.min())
-        if least <= step:
-            near = record[mine[gap <= least + 1e-9 * max(1.0, abs(float(at[one])))]]
-            places += [one] * len(near)
-            rows += near.tolist()
-    return np.array(places, np.intp), np.array(rows, np.intp)
 
 
 def _validated(text: str, conditions: Columns) -> NDArray[np.bool_]:

@@ -10,6 +10,7 @@ import pytest
 
 from specflow.errors import ConflictError, DocumentError
 from specflow.limits import parse_limit
+from specflow.model.block import Block, Plane
 from specflow.model.budget import Allocation, Budget, Reserve
 from specflow.model.limit import Limit
 from specflow.model.requirement import Requirement
@@ -154,7 +155,10 @@ def test_a_figure_that_follows_conditions_gets_a_limit_that_follows_them(tmp_pat
         preview = preview_allocation(store, "RX", AllocateOptions("equal"))
         limit = next(one.given for one in preview.proposals if one.child.id == "FIL-INSERTION-LOSS")
         # on the line from 0.5 dB at -30 °C to 3 dB at 55 °C, and ± 0.3 dB
-        assert limit.text == "by temperature_ambient[°C] (-30: <= 0.8 dB; 20: <= 2.28 dB; 55: <= 3.3 dB)"
+        assert (
+            limit.text
+            == "by temperature_ambient[°C] (-30: 0.2 dB..0.8 dB; 20: 1.67 dB..2.28 dB; 55: 2.7 dB..3.3 dB)"
+        )
         assert preview.closure.closes is True
         accept_allocation(store, preview, by="A. Invented")
         snapshot = store.load()
@@ -205,6 +209,26 @@ def test_shares_by_conditions_follow_the_drift_of_a_block(tmp_path: Path) -> Non
         accept_allocation(store, each, by="A. Invented")
         snapshot = store.load()
         assert budget_standings(snapshot, project_dictionary(snapshot))["rx"].closes is True
+
+
+def test_a_share_carries_plane_and_statistic_where_they_are_known(tmp_path: Path) -> None:
+    """What a line states; else a block's plane called as the port that the figure belongs to; never a guess."""
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        snapshot = store.load()
+        budget = snapshot.find(Budget, "RX")
+        block = snapshot.find(Block, "MIX")
+        assert budget is not None and block is not None
+        stated = {("LNA", "noise_figure"): {"plane": "element port", "statistic": "worst"}}
+        lines = tuple(
+            one.model_copy(update=stated.get((one.block, one.parameter), {})) for one in budget.lines
+        )
+        planes = (Plane(name="input"), Plane(name="output"))
+        store.apply([editing(budget, lines=lines), editing(block, planes=planes)], by="A. Invented")
+        preview = preview_allocation(store, "RX", AllocateOptions("equal"))
+    found = {one.child.id: one.child.quantity for one in preview.proposals}
+    assert (found["LNA-NOISE-FIGURE"].plane, found["LNA-NOISE-FIGURE"].statistic) == ("element port", "worst")
+    assert found["MIX-NOISE-FIGURE"].plane == "input" and found["MIX-IIP3"].plane == "input"
+    assert found["MIX-GAIN"].plane == "" and found["IF-NOISE-FIGURE"].plane == ""
 
 
 def _limits(preview: AllocatePreview) -> dict[str, Limit]:

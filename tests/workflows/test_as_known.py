@@ -2,17 +2,21 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from datetime import date
 from pathlib import Path
 
+import numpy as np
 import pytest
 
 from specflow.budgets.closure import closure_of_children
+from specflow.budgets.knowledge import KnownLine
 from specflow.budgets.probe import Probe
 from specflow.errors import DocumentError
 from specflow.model.base import Document
 from specflow.model.block import HardwareType
-from specflow.model.evidence import EvidenceColumns, EvidenceTable
+from specflow.model.budget import Budget
+from specflow.model.evidence import EvidenceColumns, EvidenceTable, ValueColumn
 from specflow.model.requirement import Method
 from specflow.parameters import load_dictionary
 from specflow.store import ProjectStore
@@ -32,6 +36,7 @@ from tests.builders import (
     an_evidence_table,
     an_item,
     at_least,
+    editing,
     some_columns,
     some_evidence,
 )
@@ -197,3 +202,136 @@ def test_a_requirement_below_the_one_served_holds_its_line_without_an_allocation
         Probe.of(budget, snapshot, load_dictionary()), children_of_budget(snapshot, budget)
     ).limits
     assert found.smallest == pytest.approx(8.0 + 5.0 - 12.0)
+
+
+def columns_of(*names: tuple[str, str, str]) -> tuple[ValueColumn, ...]:
+    """Return value columns by name, parameter and unit."""
+    return tuple(
+        a_value_column(name, quantity=a_quantity(parameter), unit=unit) for name, parameter, unit in names
+    )
+
+
+HOT_AND_COLD = some_columns(temperature_ambient=[-30.0, 20.0, 55.0])
+
+
+def known_line(store: ProjectStore, parameter: str, position: int = 1) -> KnownLine:
+    found = known_budget(store, "RX", AS_OF).known
+    return next(
+        one
+        for one in found.lines
+        if (one.read.line.parameter, one.read.line.position) == (parameter, position)
+    )
+
+
+def test_an_output_intercept_serves_a_line_at_the_input_through_the_gain_recorded_beside_it(
+    tmp_path: Path,
+) -> None:
+    """OIP3 20 dBm (u 0.4 dB) and gain 18.5 dB (u 0.3 dB) of one row: IIP3 1.5 dBm, u 0.5 dB."""
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        table = an_evidence_table(
+            "EV-1",
+            block="LNA",
+            values=columns_of(("OIP3", "oip3", "dBm"), ("G", "gain", "dB")),
+            conditions=(),
+            rows=3,
+        )
+        made = some_evidence(
+            {"OIP3": [20.0, 19.0, 18.0], "G": [18.5, 18.0, 17.0]}, conditions=HOT_AND_COLD, u=0.4
+        )
+        gain = replace(made.values["G"], u=np.full(3, 0.3))
+        made = replace(made, values={**made.values, "G": gain})
+        with_evidence(store, [*items(), table], {"EV-1": made})
+        line = known_line(store, "iip3")
+    assert line.value.tolist() == pytest.approx([1.5, 1.0, 1.0])
+    assert line.common.tolist() == pytest.approx([0.5, 0.5, 0.5])
+    assert line.source_words(0).startswith("test on qualification or production hardware")
+    assert "EV-1 OIP3 less the gain (the gain recorded beside it)" in line.source_words(0)
+
+
+def test_through_an_estimated_gain_an_intercept_is_known_no_better_than_that(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        table = an_evidence_table(
+            "EV-1", block="LNA", values=columns_of(("OIP3", "oip3", "dBm")), conditions=(), rows=3
+        )
+        made = some_evidence({"OIP3": [20.0, 19.0, 18.0]}, conditions=HOT_AND_COLD, u=0.4)
+        with_evidence(store, [*items(), table], {"EV-1": made})
+        line = known_line(store, "iip3")
+    # gain 18 dB ± 0.5 dB, uniform: u = 0.289 dB
+    assert line.value.tolist() == pytest.approx([2.0, 1.0, 0.0])
+    assert line.common[0] == pytest.approx(np.hypot(0.4, 0.5 / np.sqrt(3.0)))
+    assert line.source_words(0).startswith(
+        "estimate: EV-1 OIP3 less the gain (the gain of the block, estimate"
+    )
+
+
+def test_the_gain_of_the_same_specimen_is_taken_from_another_table(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        tables = [
+            an_evidence_table(
+                "EV-1", block="LNA", values=columns_of(("OIP3", "oip3", "dBm")), conditions=(), rows=3
+            ),
+            an_evidence_table(
+                "EV-2", block="LNA", values=columns_of(("G", "gain", "dB")), conditions=(), rows=6
+            ),
+        ]
+        twice = some_columns(temperature_ambient=[-30.0, 20.0, 55.0] * 2)
+        gains = some_evidence(
+            {"G": [18.0, 18.0, 18.0, 15.0, 15.0, 15.0]},
+            conditions=twice,
+            items=["LNA-1"] * 3 + ["LNA-2"] * 3,
+        )
+        made = some_evidence({"OIP3": [20.0, 19.0, 18.0]}, conditions=HOT_AND_COLD, items="LNA-2")
+        with_evidence(store, [*items(), *tables], {"EV-1": made, "EV-2": gains})
+        line = known_line(store, "iip3")
+    assert line.value.tolist() == pytest.approx([5.0, 4.0, 3.0])
+    assert "less the gain (the gain of the block, the same specimen, EV-2 G)" in line.source_words(0)
+    assert line.source_words(0).startswith("test on qualification or production hardware")
+
+
+def test_what_is_recorded_straight_goes_before_what_comes_through_the_gain(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        tables = [
+            an_evidence_table(
+                "EV-1", block="LNA", values=columns_of(("OIP3", "oip3", "dBm")), conditions=(), rows=3
+            ),
+            an_evidence_table(
+                "EV-2", block="LNA", values=columns_of(("IIP3", "iip3", "dBm")), conditions=(), rows=1
+            ),
+        ]
+        made = {
+            "EV-1": some_evidence({"OIP3": [20.0, 19.0, 18.0]}, conditions=HOT_AND_COLD),
+            "EV-2": some_evidence({"IIP3": [-3.0]}, conditions=some_columns(temperature_ambient=[-30.0])),
+        }
+        with_evidence(store, [*items(), *tables], made)
+        line = known_line(store, "iip3")
+    assert line.value.tolist() == pytest.approx([-3.0, 1.0, 0.0])
+
+
+def test_a_noise_temperature_serves_a_noise_figure_exactly(tmp_path: Path) -> None:
+    """290 K is 3.0103 dB; u = 10 K there is 10/ln 10 · 10/580 = 0.0749 dB."""
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        table = an_evidence_table(
+            "EV-1", block="LNA", values=columns_of(("Te", "noise_temperature", "K")), conditions=(), rows=3
+        )
+        made = some_evidence({"Te": [290.0, 145.0, 0.0]}, conditions=HOT_AND_COLD, u=10.0)
+        with_evidence(store, [*items(), table], {"EV-1": made})
+        line = known_line(store, "noise_figure")
+    assert line.value.tolist() == pytest.approx([3.0103, 1.7609, 0.0], abs=1e-4)
+    assert line.common[0] == pytest.approx(0.0749, abs=1e-4)
+    assert "EV-1 Te as a noise figure" in line.source_words(0)
+
+
+def test_evidence_of_another_plane_than_the_line_states_is_left_out(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        budget = store.load().find(Budget, "RX")
+        assert budget is not None
+        lines = tuple(
+            one.model_copy(update={"plane": "element port"}) if one.parameter == "noise_figure" else one
+            for one in budget.lines
+        )
+        store.apply([editing(budget, lines=lines)], by="A. Invented")
+        column = a_value_column("NF", quantity=a_quantity("noise_figure", plane="connector"))
+        table = an_evidence_table("EV-1", block="LNA", values=(column,), conditions=(), rows=3)
+        with_evidence(store, [*items(), table], {"EV-1": over_temperature(1.0, 1.1, 1.2)})
+        found = known_budget(store, "RX", AS_OF)
+    assert any("EV-1 NF is left out: another plane" in note for note in found.notes)

@@ -184,6 +184,21 @@ LAYOUT = SheetLayout(
             width=10,
         ),
         SheetColumn(
+            key="plane",
+            title="Plane",
+            aliases=("Port", "Reference plane"),
+            field="lines",
+            guidance="Where the figure holds, as the block's requirements say it. Empty: not stated.",
+            width=14,
+        ),
+        SheetColumn(
+            key="statistic",
+            title="Statistic",
+            field="lines",
+            guidance="Of what it is: worst, rms, mean of power ... Empty: not stated.",
+            width=14,
+        ),
+        SheetColumn(
             key="maturity",
             title="Maturity",
             field="lines",
@@ -340,6 +355,8 @@ def _line(row: SheetRow, order: int, block: str, group: _Lines, intake: Intake) 
         shared=row.one_of("shared", _SHARED, "common"),
         growth=growth,
         sideband=row.one_of("sideband", _SIDEBANDS, ""),
+        plane=row.text("plane") or named.plane,
+        statistic=row.text("statistic") or named.statistic,
         maturity=row.choice("maturity", Maturity, Maturity.ESTIMATED),
         source=row.prose("source"),
     )
