@@ -187,9 +187,9 @@ def interpolated(samples: Samples) -> Outcome:
     where = value_words(samples.axis, samples.number("at"), samples.axis_unit)
     exact = bool(along[nearest] == place)
     rule = "that of the reading" if exact else "that of the neighbours, interpolated"
-    return single(
-        value, readings.unit, nearest, at=where if exact else f"{where}, interpolated", u=u, u_rule=rule
-    )
+    at = where if exact else f"{where}, interpolated"
+    found = single(value, readings.unit, nearest, at=at, u=u, u_rule=rule)
+    return replace(found, axes={samples.axis: np.array([samples.number("at")])})
 
 
 _BANDWIDTH = (

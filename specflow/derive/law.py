@@ -82,9 +82,9 @@ class Law:
 
     ``needs`` says in a sentence what must be stored. ``gives``: parameters it usually gives (for proposals).
     ``takes_bounds``: readings that are intervals ("< -90") may enter. ``takes_repeats``: several readings at one
-    axis value may. ``statistic``: what the result is called where it is of the same parameter as the readings ("" where it
-    is a reading like the others; "{of}" takes a setting). ``brackets``: the law interpolates, so the reading beyond each end of the range enters, too, and
-    the ends need only be bracketed.
+    axis value may. ``statistic``: what the result is called where it is of the same parameter as the readings ("" where
+    it is a reading like the others; "{of}" takes a setting). ``brackets``: the law interpolates, so the reading beyond
+    each end of the range enters, too, and the ends need only be bracketed.
     """
 
     name: str

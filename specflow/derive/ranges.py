@@ -22,8 +22,8 @@ def worst(samples: Samples) -> Outcome:
     Formula: the least where higher is better, the greatest where lower is, the farthest from zero where nearer to zero
     is; where neither is (and with ``side`` both) the interval from the least to the greatest. A reading that is a bound
     enters with its worse end; the result is the bound then.
-    Valid: the lowest reading speaks for lower limits only, the highest for upper ones; the interval for both. The uncertainty is that of the governing
-    reading: that several readings competed biases the worst outwards, never inwards.
+    Valid: the lowest reading speaks for lower limits only, the highest for upper ones; the interval for both. The
+    uncertainty is that of the governing reading: that several competed biases the worst outwards, never inwards.
     Source: definition.
     """
     readings, side = samples.values["value"], _side(samples)
@@ -37,8 +37,21 @@ def worst(samples: Samples) -> Outcome:
         row = int(np.argmax(np.maximum(np.abs(readings.low), np.abs(readings.high))))
     u = None if readings.u is None else readings.u[[row]]
     place = np.array([row], np.intp)
+    only = {"lowest": "a lower", "highest": "an upper"}.get(side)
+    notes = (f"the {side} reading speaks for {only} limit only",) if only else ()
+    low, high = readings.low[place], readings.high[place]
+    return Outcome(low, readings.unit, place, high, u=u, u_rule=OF_THE_READING, notes=notes)
+
+
+def _both(samples: Samples) -> Outcome:
+    """Return the interval from the least to the greatest, with the larger uncertainty of the two."""
+    readings = samples.values["value"]
+    least, greatest = int(np.argmin(readings.low)), int(np.argmax(readings.high))
+    u = None if readings.u is None else readings.u[[least, greatest]].max(keepdims=True)
+    at = (f"from {_at(samples, least)} to {_at(samples, greatest)}",)
+    low, high = readings.low[[least]], readings.high[[greatest]]
     return Outcome(
-        readings.low[place], readings.unit, place, readings.high[place], u=u, u_rule=OF_THE_READING
+        low, readings.unit, np.array([least], np.intp), high, at, u, "the larger of the two readings"
     )
 
 

@@ -13,7 +13,8 @@ from specflow.limits.tree import side_of
 from specflow.model.base import Document, code_key
 from specflow.model.derivation import Derivation, InputColumn, SettingSaid
 from specflow.model.evidence import EvidenceTable, Supersession, ValueColumn, Withdrawal
-from specflow.model.parameter import QuantityIdentity
+from specflow.model.limit import Side
+from specflow.model.parameter import Better, QuantityIdentity
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Snapshot
 from specflow.parameters import Dictionary
@@ -92,17 +93,12 @@ def preview_in(snapshot: Snapshot, dictionary: Dictionary, options: DeriveOption
     """Return the preview for a snapshot that is loaded."""
     law = law_named(options.law)
     roles = _roles(snapshot, law, options)
-    quantity = _quantity(snapshot, dictionary, law, options, roles[0])
+    settings = complete_settings(law, options.settings)
+    quantity = _quantity(snapshot, dictionary, law, options, settings, roles[0])
     parameter = dictionary.get(quantity.parameter)
-    assert parameter is not None
-    request = Request(
-        law,
-        roles,
-        complete_settings(law, options.settings),
-        parameter,
-        tuple(options.over),
-        tuple(options.where),
-    )
+    if parameter is None:
+        raise DocumentError(f"{quantity.parameter} is no known parameter", where=options.requirement)
+    request = Request(law, roles, settings, parameter, tuple(options.over), tuple(options.where))
     derived = derive_table(request)
     derivation = _derivation(request, quantity, derived)
     table = _table(snapshot, request, quantity, derived, derivation)
