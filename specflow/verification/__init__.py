@@ -3,6 +3,8 @@
 Where things live:
 
 - ``evaluate`` the entrance; ``workspace`` what many requirements share; ``status`` one requirement as a whole
+- ``case`` what one requirement is judged by; ``docket`` opens cases some at a time; ``abreast`` judges those that are
+  alike in one go
 - ``standing`` may a record count; ``changed`` what a change record touches; ``dates`` when people decided
 - ``comparable`` may it be compared; ``residuals`` readings near an instrument's floor
 - ``records`` the readings of one quantity, tables stacked (``stacking``); ``map_choice`` whose conditions they state

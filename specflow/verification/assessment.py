@@ -7,29 +7,19 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
-from specflow.conditions.match import Matching
 from specflow.conditions.points import Points
-from specflow.limits import LimitContext, evaluate_limit
 from specflow.limits.conversion import difference_unit
-from specflow.limits.tree import tree_names
-from specflow.model.base import code_key
-from specflow.model.limit import Limit
-from specflow.model.requirement import Activity, Requirement
+from specflow.model.requirement import Requirement
 from specflow.model.verdict import Conflict, Mismatch, RecordRef, Standing, Verdict
 from specflow.verification.activity import ActivityOutcome, summarise
-from specflow.verification.alternatives import Member, members_of, put_together
-from specflow.verification.changed import remarks_on
+from specflow.verification.alternatives import put_together
+from specflow.verification.case import Case, Ground, bench_of
 from specflow.verification.conflicts import conflicts
-from specflow.verification.credit import credit
 from specflow.verification.grid import Bench
-from specflow.verification.judging import Judging
-from specflow.verification.limit_inputs import is_plain, limit_columns
 from specflow.verification.points import ItemPoints, item_points
-from specflow.verification.readings import Readings, Served, readings_of, serving
-from specflow.verification.records import Records
-from specflow.verification.standing import STALE, STANDINGS
+from specflow.verification.readings import Readings
+from specflow.verification.standing import STANDINGS
 from specflow.verification.unmatched import serving_nothing
 from specflow.verification.workspace import Workspace
 
@@ -51,41 +41,24 @@ class Assessment:
     remarks: tuple[str, ...] = ()
 
 
-@dataclass(frozen=True, slots=True)
-class Ground:
-    """The records of a limit and what they serve: the same for all activities.
-
-    ``readings`` are the verdicts where every reading is judged by itself; None where that takes others into account
-    (statistics, allowances, sweeps), because which of them count differs between activities.
-    """
-
-    points: Points
-    matching: Matching
-    records: Records
-    served: Served
-    judging: Judging
-    readings: Readings | None
-    nothing_required: NDArray[np.bool_] | None
-    remarks: tuple[str, ...] = ()
-
-
-def assess(requirement: Requirement, activities: Sequence[Activity], workspace: Workspace) -> Assessment:
-    """Judge all evidence of a requirement. ConditionsError when its points cannot be had."""
-    points = workspace.points(requirement)
-    members = members_of(requirement, workspace.dictionary)
-    grounds = [lay_ground(requirement, member, points, workspace) for member in members]
+def assess(case: Case, workspace: Workspace) -> Assessment:
+    """Judge all evidence of a requirement."""
+    requirement, points = case.requirement, case.points
     named = [str(getattr(workspace.item(name), "id", name)) for name in requirement.provers.items]
-    units = [difference_unit(member.limit.unit) for member in members]
+    units = [difference_unit(member.limit.unit) for member in case.members]
     outcomes: list[ActivityOutcome] = []
     benches: list[Bench] = []
     shown = 0
-    for activity in activities:
-        own = [_bench(requirement, activity, ground, workspace) for ground in grounds]
-        items, shown = _items(requirement, own, points.size, units)
+    for place, activity in enumerate(case.activities):
+        if case.found:
+            own, items = [case.found[place].bench], case.found[place].items
+        else:
+            own = [bench_of(ground, activity, workspace) for ground in case.grounds]
+            items, shown = _items(requirement, own, points.size, units)
         why = [text for bench in own for text in bench.readings.why + bench.credit.why]
         outcomes.append(summarise(activity, requirement.provers, points, items, units[shown], named, why))
         benches = benches or own
-    return _assessment(points, members[shown].limit.unit, outcomes, grounds, benches, workspace)
+    return _assessment(case, case.members[shown].limit.unit, outcomes, benches, workspace)
 
 
 def _items(
@@ -100,20 +73,16 @@ def _items(
 
 
 def _assessment(
-    points: Points,
-    unit: str,
-    outcomes: Sequence[ActivityOutcome],
-    grounds: Sequence[Ground],
-    benches: Sequence[Bench],
-    workspace: Workspace,
+    case: Case, unit: str, outcomes: Sequence[ActivityOutcome], benches: Sequence[Bench], workspace: Workspace
 ) -> Assessment:
-    tolerance = difference_unit(unit)
+    tolerance, grounds = difference_unit(unit), case.grounds
+    doubtful = () if case.found and not case.found[0].doubtful else benches
     return Assessment(
-        points,
+        case.points,
         tolerance,
         tuple(outcomes),
         _standing(grounds[0]) if len(grounds) == 1 else _added([_standing(one) for one in grounds]),
-        tuple([one for bench in benches for one in conflicts(bench, unit, tolerance, workspace.policy)]),
+        tuple([one for bench in doubtful for one in conflicts(bench, unit, tolerance, workspace.policy)]),
         _mismatches(grounds, workspace),
         tuple([one for ground in grounds for one in _ambiguous(ground)]),
         _remarks(grounds, benches),
@@ -147,77 +116,6 @@ def _too_wide(readings: Readings) -> tuple[str, ...]:
         return ()
     return (
         f"{count} reading{'s' * (count != 1)} known as an interval only, a part of which meets the limit",
-    )
-
-
-def lay_ground(requirement: Requirement, member: Member, points: Points, workspace: Workspace) -> Ground:
-    """Gather the records of one limit, match and judge them."""
-    records = workspace.records(requirement, member.want)
-    conditions = workspace.conditions_of(requirement, records)
-    matched = workspace.matching(points, conditions)
-    served = readings_of(records, *serving(records, matched.record, matched.point))
-    nothing, holes = _nothing_required(member.limit, points, workspace)
-    judging = Judging(requirement, member.want, member.limit, points, records, conditions, workspace)
-    return Ground(
-        points,
-        matched.matching,
-        records,
-        served,
-        judging,
-        judging.one_by_one(served) if judging.each_alone else None,
-        nothing,
-        (*holes, *_changed_below(requirement, records, workspace)),
-    )
-
-
-def _changed_below(requirement: Requirement, records: Records, workspace: Workspace) -> tuple[str, ...]:
-    """Say that parts of the block have changed since its evidence was taken, where that does not make it stale."""
-    changes = workspace.changes_below.get(code_key(requirement.block), ())
-    if not changes:
-        return ()
-    codes = enumerate(records.sources)
-    fresh = [
-        source.table for code, source in codes if (records.standing[records.source == code] < STALE).any()
-    ]
-    return remarks_on(fresh, changes)
-
-
-def _nothing_required(
-    limit: Limit, points: Points, workspace: Workspace
-) -> tuple[NDArray[np.bool_] | None, tuple[str, ...]]:
-    """Return the points at which the limit asks for nothing on purpose, whatever is recorded; None where it asks.
-
-    A required point that the limit does not reach is a hole in the requirement: it stays unproved, and that is said.
-    """
-    if is_plain(limit) or (not tree_names(limit.tree) and limit.tree.kind != "no_limit"):
-        return None, ()
-    every = np.arange(points.size)
-    columns = limit_columns(limit, points, None, every, every, workspace.declared)
-    bounds = evaluate_limit(limit, LimitContext(columns, workspace.declared, points.size))
-    nothing = np.broadcast_to(~bounds.applies & ~bounds.unknown & ~bounds.outside, (points.size,))
-    holes = int(np.count_nonzero(np.broadcast_to(bounds.outside & ~bounds.unknown, (points.size,))))
-    words = f"the limit says nothing at {holes} of {points.size} required points: add a case for them, or 'no limit'"
-    return nothing if nothing.any() else None, (words,) if holes else ()
-
-
-def _bench(requirement: Requirement, activity: Activity, ground: Ground, workspace: Workspace) -> Bench:
-    weights = credit(activity, requirement.provers, ground.records, ground.served.record, workspace)
-    readings = ground.readings
-    if readings is None:
-        # What judges statistics, allowances and sweeps is long to load, and most projects have few of them.
-        from specflow.verification.grouped import judge_grouped
-
-        readings, weights = judge_grouped(ground.judging, ground.served, weights)
-    return Bench(
-        ground.points,
-        ground.matching,
-        ground.records,
-        readings,
-        weights,
-        ground.judging,
-        ground.nothing_required,
-        requirement.decision_rule.conditional_pass_counts,
-        ground.judging.together,
     )
 
 

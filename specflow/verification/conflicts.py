@@ -22,6 +22,8 @@ from specflow.verification.grid import Bench, at_one_value
 from specflow.verification.standing import ACCEPTED
 
 Floats = NDArray[np.float64]
+Flags = NDArray[np.bool_]
+Rows = NDArray[np.intp]
 
 #: The most that are named for one requirement: by then nobody trusts its evidence.
 MOST_CONFLICTS = 20
@@ -33,7 +35,7 @@ _LARGE = 200
 
 def conflicts(bench: Bench, unit: str, tolerance_unit: str, policy: Policy) -> tuple[Conflict, ...]:
     """Return the conflicts among the readings of one activity, one a point and item: the pair that differs most."""
-    allowed = _expanded(bench, unit, policy)
+    allowed = expanded(bench, unit, policy)
     pairs: list[tuple[int, int]] = []
     for group in _suspicious(bench, allowed):
         pair = _worst_pair(bench, group, allowed) if len(group) > 1 else None
@@ -44,7 +46,7 @@ def conflicts(bench: Bench, unit: str, tolerance_unit: str, policy: Policy) -> t
     return tuple([_conflict(bench, first, second, allowed, tolerance_unit) for first, second in pairs])
 
 
-def _expanded(bench: Bench, unit: str, policy: Policy) -> Floats:
+def expanded(bench: Bench, unit: str, policy: Policy) -> Floats:
     """Return U of every reading, the house's threshold where none is known."""
     spread = 2 * bench.readings.u
     unknown = spread != spread
@@ -57,8 +59,8 @@ def _expanded(bench: Bench, unit: str, policy: Policy) -> Floats:
     return spread
 
 
-def _suspicious(bench: Bench, allowed: Floats) -> Iterator[NDArray[np.intp]]:
-    """Yield groups (item, point, value along the range) whose extremes may differ too much.
+def doubtful_cells(bench: Bench, allowed: Floats) -> tuple[Rows, Flags]:
+    """Return the cell (item, point, value along the range) of each reading, and whose extremes may differ too much.
 
     √(U1² + U2²) is at least (U1 + U2)/√2, so intervals of U/√2 that all overlap hold no conflict.
     """
@@ -72,7 +74,13 @@ def _suspicious(bench: Bench, allowed: Floats) -> Iterator[NDArray[np.intp]]:
     highest.fill(-np.inf)
     np.minimum.at(lowest, cell, readings.low + half)
     np.maximum.at(highest, cell, readings.high - half)
-    doubtful = highest > lowest
+    return cell, highest > lowest
+
+
+def _suspicious(bench: Bench, allowed: Floats) -> Iterator[Rows]:
+    """Yield groups of accepted readings of one rank in a doubtful cell."""
+    readings, records = bench.readings, bench.records
+    cell, doubtful = doubtful_cells(bench, allowed)
     if not np.count_nonzero(doubtful):
         return
     rows = np.flatnonzero(doubtful[cell] & (readings.low == readings.high))
@@ -84,7 +92,7 @@ def _suspicious(bench: Bench, allowed: Floats) -> Iterator[NDArray[np.intp]]:
         yield from _same_elsewhere(bench, group) if len(group) > _LARGE else [group]
 
 
-def _same_elsewhere(bench: Bench, group: NDArray[np.intp]) -> Iterator[NDArray[np.intp]]:
+def _same_elsewhere(bench: Bench, group: Rows) -> Iterator[Rows]:
     """Split a large group by the conditions that its point does not name: only like readings are compared anyway.
 
     Unlike in small groups, an unstated condition is here one more value.
@@ -104,7 +112,7 @@ def _same_elsewhere(bench: Bench, group: NDArray[np.intp]) -> Iterator[NDArray[n
     yield from np.split(group[order], np.flatnonzero(change) + 1)
 
 
-def _worst_pair(bench: Bench, group: NDArray[np.intp], allowed: Floats) -> tuple[int, int] | None:
+def _worst_pair(bench: Bench, group: Rows, allowed: Floats) -> tuple[int, int] | None:
     """Return the pair of a group that differs most beyond what is allowed, under conditions that agree."""
     if len(group) > _LARGE:
         half = allowed[group] * _HALF

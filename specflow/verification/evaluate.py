@@ -13,6 +13,7 @@ from specflow.model.snapshot import Results, Snapshot
 from specflow.model.verdict import RequirementStatus
 from specflow.parameters import Dictionary
 from specflow.verification.decisions import Decisions
+from specflow.verification.docket import Docket
 from specflow.verification.lower_level import status_by_children
 from specflow.verification.status import status_of
 from specflow.verification.unmatched import misattributed, unmatched
@@ -38,9 +39,10 @@ def _evaluated(
     asked = None if only is None else {code_key(one) for one in only}
     wanted = _wanted(snapshot, decisions, asked)
     workspace.fetch(requirement for requirement in wanted if not requirement.met_by_lower_level)
+    docket = Docket((one for one in wanted if not one.met_by_lower_level), workspace)
     statuses: dict[str, RequirementStatus] = {}
     for requirement in wanted:
-        _compute(requirement, statuses, workspace, decisions, frozenset())
+        _compute(requirement, statuses, docket, workspace, decisions, frozenset())
     for key, mismatches in misattributed(snapshot).items():
         if key in statuses:
             found = statuses[key]
@@ -78,6 +80,7 @@ def _children(requirement: Requirement, snapshot: Snapshot, decisions: Decisions
 def _compute(
     requirement: Requirement,
     statuses: dict[str, RequirementStatus],
+    docket: Docket,
     workspace: Workspace,
     decisions: Decisions,
     above: frozenset[str],
@@ -88,14 +91,14 @@ def _compute(
     if found is not None:
         return found
     if not requirement.met_by_lower_level:
-        status = status_of(requirement, workspace, decisions)
+        status = status_of(requirement, docket, workspace, decisions)
     else:
         path = above | {key}
         children = [
-            _compute(child, statuses, workspace, decisions, path)
+            _compute(child, statuses, docket, workspace, decisions, path)
             for child in _children(requirement, workspace.snapshot, decisions)
             if code_key(child.id) not in path
         ]
-        status = status_by_children(requirement, children, workspace, decisions)
+        status = status_by_children(requirement, children, docket, workspace, decisions)
     statuses[key] = status
     return status

@@ -71,6 +71,13 @@ class Grid:
     cell: Rows
     weighing: Flags = field(init=False)
 
+    @classmethod
+    def over(cls, bench: Bench, pair: Rows | None, item: Rows, items: int, cell: Rows) -> Grid:
+        """Return the grid with what weighs in it."""
+        grid = cls(bench, pair, item, items, cell)
+        grid.weighing = _weighing(grid)
+        return grid
+
     def of(self, values: NDArray[T]) -> NDArray[T]:
         """Return values of the readings, one for each reading and item."""
         return values if self.pair is None else values[self.pair]
@@ -85,10 +92,7 @@ def lay_out(bench: Bench, *, together: bool) -> tuple[Grid, Sequence[str]]:
     """Return the readings over items × points, and the names of the items (all as one item with ``together``)."""
     names, pair, item = _by_item(bench, together or bench.together)
     point = bench.readings.point if pair is None else bench.readings.point[pair]
-    cell = item * bench.points.size + point
-    grid = Grid(bench, pair, item, len(names), cell)
-    grid.weighing = _weighing(grid)
-    return grid, names
+    return Grid.over(bench, pair, item, len(names), item * bench.points.size + point), names
 
 
 def _by_item(bench: Bench, together: bool) -> tuple[Sequence[str], Rows | None, Rows]:

@@ -14,10 +14,11 @@ from specflow.errors import ConditionsError, ExpressionError
 from specflow.model.requirement import Requirement
 from specflow.model.verdict import CloseOut, Compliance, Label, RequirementStatus, Verdict
 from specflow.verification.applicability import applicability
-from specflow.verification.assessment import Assessment, assess
+from specflow.verification.assessment import Assessment
 from specflow.verification.compliance import Facts
 from specflow.verification.decisions import Decisions
-from specflow.verification.status import own_facts, required_activities, status_from, with_evidence
+from specflow.verification.docket import Docket
+from specflow.verification.status import own_facts, status_from, with_evidence
 from specflow.verification.waiving import NO_WAIVER
 from specflow.verification.workspace import Workspace
 
@@ -32,6 +33,7 @@ _VERDICTS = {
 def status_by_children(
     requirement: Requirement,
     children: Sequence[RequirementStatus],
+    docket: Docket,
     workspace: Workspace,
     decisions: Decisions,
 ) -> RequirementStatus:
@@ -44,7 +46,7 @@ def status_by_children(
     words = f"met by lower-level closure alone: {met} of {len(binding)} children compliant"
     if not binding:
         words = "to be met by lower-level closure alone, and it has no children"
-    own = _own_fails(requirement, workspace) if applies and not facts.to_be_defined else None
+    own = _own_fails(requirement, docket) if applies and not facts.to_be_defined else None
     if own is not None:
         judged = with_evidence(facts, requirement, own, workspace, decisions)
         # A waiver of the requirement is held against its own readings; it excuses no child.
@@ -80,10 +82,10 @@ def _is_open_for(child: RequirementStatus, reason: Label) -> bool:
     return child.label is reason or child.close_out_reason.split("; ")[0] == reason.value
 
 
-def _own_fails(requirement: Requirement, workspace: Workspace) -> Assessment | None:
+def _own_fails(requirement: Requirement, docket: Docket) -> Assessment | None:
     """Return the requirement's own evidence where something of it fails."""
     try:
-        found = assess(requirement, required_activities(requirement, workspace), workspace)
+        found = docket.assess(requirement)
     except (ConditionsError, ExpressionError):
         return None  # what cannot be judged does not fail
     return found if any(outcome.failing for outcome in found.outcomes) else None

@@ -22,6 +22,7 @@ from specflow.verification.grid import Bench, Grid, lay_out
 T = TypeVar("T", bound=np.generic)
 Codes = NDArray[np.int8]
 Flags = NDArray[np.bool_]
+Floats = NDArray[np.float64]
 Rows = NDArray[np.intp]
 
 _PASS, _CONDITIONAL_PASS = int(Verdict.PASS), int(Verdict.CONDITIONAL_PASS)
@@ -130,7 +131,9 @@ def item_points(bench: Bench, *, together: bool) -> list[ItemPoints]:
     if bench.readings.size == 0:
         return [_without_evidence(bench)]
     grid, names = lay_out(bench, together=together)
-    return _items(grid, names, _governing(grid))
+    cells = governed(grid)
+    tables = tuple([one.table for one in bench.records.sources])
+    return [cells.item(place, name, tables, grid, place) for place, name in enumerate(names)]
 
 
 def _without_evidence(bench: Bench) -> ItemPoints:
@@ -171,22 +174,86 @@ def _filled(shape: int | tuple[int, ...], value: float, kind: type = np.float64)
     return array
 
 
-def _items(grid: Grid, names: Sequence[str], governing: Rows) -> list[ItemPoints]:
-    """Spread the governing readings over all cells, and cut the grid into items."""
-    found = _Spread(grid, governing)
+@dataclass(frozen=True, slots=True)
+class Cells:
+    """What governs every cell of a grid: arrays (items, points), named as in ``PointResults`` and ``ItemPoints``."""
+
+    verdict: Codes
+    proved: Flags
+    counted: Flags
+    margin: Floats
+    guarded_margin: Floats
+    value_low: Floats
+    value_high: Floats
+    u: Floats
+    lower: Floats
+    upper: Floats
+    table: NDArray[np.int32]
+    column: NDArray[np.int32]
+    row: NDArray[np.int32]
+    effective: Codes
+    rank: Codes
+    stale: Flags
+    marginal: Flags
+
+    def item(
+        self, line: int, name: str, tables: Sequence[EvidenceTable], laid_out: Grid, place: int
+    ) -> ItemPoints:
+        """Return one line of cells as the points of an item, which is item ``place`` of the grid ``laid_out``."""
+        results = PointResults(
+            name,
+            self.verdict[line],
+            self.proved[line],
+            self.counted[line],
+            self.margin[line],
+            self.guarded_margin[line],
+            self.value_low[line],
+            self.value_high[line],
+            self.u[line],
+            self.lower[line],
+            self.upper[line],
+            self.table[line],
+            self.column[line],
+            self.row[line],
+            tuple([table.id for table in tables]),
+        )
+        return ItemPoints(
+            name,
+            results,
+            tables,
+            self.effective[line],
+            self.rank[line],
+            self.stale[line],
+            self.marginal[line],
+            laid_out,
+            place,
+        )
+
+
+def governed(grid: Grid) -> Cells:
+    """Spread the governing readings over all cells."""
+    found = _Spread(grid, _governing(grid))
     verdict, counted, proved, effective = _verdicts(grid, found)
-    known = _known(grid, found)
-    rank = found(grid.bench.credit.rank, -1)
-    marginal = found(grid.bench.readings.marginal, False) & counted
-    stale = _stale(grid).reshape(found.shape)
-    tables = tuple([one.table for one in grid.bench.records.sources])
-    ids = tuple([table.id for table in tables])
-    items: list[ItemPoints] = []
-    for i, name in enumerate(names):
-        figures: list[Any] = [*[values[i] for values in known], ids]
-        results = PointResults(name, verdict[i], proved[i], counted[i], *figures)
-        items.append(ItemPoints(name, results, tables, effective[i], rank[i], stale[i], marginal[i], grid, i))
-    return items
+    margin, guarded, low, high, u, lower, upper, table, column, row = _known(grid, found)
+    return Cells(
+        verdict,
+        proved,
+        counted,
+        margin,
+        guarded,
+        low,
+        high,
+        u,
+        lower,
+        upper,
+        table,
+        column,
+        row,
+        effective,
+        found(grid.bench.credit.rank, -1),
+        _stale(grid).reshape(found.shape),
+        found(grid.bench.readings.marginal, False) & counted,
+    )
 
 
 class _Spread:
@@ -230,7 +297,7 @@ def _verdicts(grid: Grid, found: _Spread) -> tuple[Codes, Flags, Flags, Codes]:
 
 
 def _known(grid: Grid, found: _Spread) -> tuple[NDArray[Any], ...]:
-    """Return the figures of each cell, in the order of the fields of ``PointResults``, from ``margin`` to ``row``."""
+    """Return the figures of each cell, in the order of the fields of ``Cells``, from ``margin`` to ``row``."""
     readings, records = grid.bench.readings, grid.bench.records
     low = found(readings.low, np.nan)
     if found.full and len(records.sources) == 1:

@@ -40,7 +40,8 @@ from specflow.verification.records import Records
 Array = NDArray[np.float64]
 Rows = NDArray[np.intp]
 Codes = NDArray[np.int8]
-_NO_BOUND = np.array([np.nan])
+Flags = NDArray[np.bool_]
+NO_BOUND = np.array([np.nan])
 _PASS, _FAIL = int(Verdict.PASS), int(Verdict.FAIL)
 
 
@@ -126,17 +127,32 @@ def readings_of(records: Records, record: Rows, point: Rows) -> Served:
 def judge(records: Records, served: Served, judgement: Judgement) -> Readings:
     """Judge the readings; the context of the judgement has one row for each, or the limit needs no input."""
     bounds = evaluate_limit(judgement.limit, judgement.context)
-    record, u = served.record, served.u
     low, high, lost = in_bandwidth_of_limit(
-        records, record, served.low, served.high, bounds.bandwidth_hz, judgement.parsed_unit
+        records, served.record, served.low, served.high, bounds.bandwidth_hz, judgement.parsed_unit
     )
-    seen, why = _compared(low, high, judgement)
-    core = _core(
-        bounds, judgement, records.exact if isinstance(records.exact, bool) else records.exact[record]
-    )
+    exact = records.exact if isinstance(records.exact, bool) else records.exact[served.record]
+    return held_against(bounds, served, (low, high, lost), judgement, exact=exact)
+
+
+def held_against(
+    bounds: Bounds,
+    served: Served,
+    seen: tuple[Array, Array, Flags],
+    judgement: Judgement,
+    *,
+    exact: Flags | bool,
+) -> Readings:
+    """Judge readings by the bounds that the limit sets for them.
+
+    ``seen`` are the values in the bandwidth of the limit, and where they cannot be had; ``exact`` says which of them
+    are compared as written.
+    """
+    u = served.u
+    low, high, lost = seen
+    compared, why = _compared(low, high, judgement)
     shift, inadmissible = _shift(u, judgement, bounds)
     guard = 0.0 if judgement.rule.name is RuleName.SIMPLE else guard_band(judgement.rule.guard_factor, u)
-    verdict, margin = _decided(seen, core, shift, guard, judgement.rule)
+    verdict, margin = _decided(compared, _core(bounds, judgement, exact), shift, guard, judgement.rule)
     guarded = margin - shift - guard
     _overrule(verdict, np.isnan(shift) | lost if isinstance(shift, np.ndarray) else lost, inadmissible)
     whys = [*why, *_unsure_words(u, judgement, lost)]
@@ -146,13 +162,13 @@ def judge(records: Records, served: Served, judgement: Judgement) -> Readings:
         verdict[:] = Verdict.INCONCLUSIVE
     return Readings(
         served,
-        record,
+        served.record,
         served.point,
         low,
         high,
         u,
-        _NO_BOUND if bounds.lower is None else bounds.lower,
-        _NO_BOUND if bounds.upper is None else bounds.upper,
+        NO_BOUND if bounds.lower is None else bounds.lower,
+        NO_BOUND if bounds.upper is None else bounds.upper,
         verdict,
         margin,
         guarded,

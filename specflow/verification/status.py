@@ -16,42 +16,33 @@ from specflow.model.requirement import Activity, Requirement
 from specflow.model.verdict import CloseOut, GoverningPoint, PointsState, RequirementStatus, Verdict
 from specflow.verification.activity import ActivityOutcome
 from specflow.verification.applicability import applicability
-from specflow.verification.assessment import Assessment, assess
+from specflow.verification.assessment import Assessment
+from specflow.verification.case import required_activities
 from specflow.verification.closeout import label_and_close_out, waived
 from specflow.verification.compliance import Facts, compliance
 from specflow.verification.decisions import Decisions
+from specflow.verification.docket import Docket
 from specflow.verification.points import Failing
 from specflow.verification.splits import declared
 from specflow.verification.waiving import waiving
 from specflow.verification.workspace import Workspace
 
 
-def status_of(requirement: Requirement, workspace: Workspace, decisions: Decisions) -> RequirementStatus:
+def status_of(
+    requirement: Requirement, docket: Docket, workspace: Workspace, decisions: Decisions
+) -> RequirementStatus:
     """Compute the status of a requirement that is proved by its own activities."""
     applies, reason, remarks = applicability(requirement, workspace.declared)
     if not applies:
         return status_from(requirement, Facts(applicable=False, not_applicable_reason=reason), None, remarks)
-    activities = required_activities(requirement, workspace)
+    activities = required_activities(requirement, workspace.snapshot)
     facts = own_facts(requirement, activities, workspace, decisions)
     try:
-        found = assess(requirement, activities, workspace)
+        found = docket.assess(requirement)
     except (ConditionsError, ExpressionError) as error:
         return status_from(requirement, facts, None, (str(error), *remarks))
     facts = facts if facts.to_be_defined else with_evidence(facts, requirement, found, workspace, decisions)
     return status_from(requirement, facts, found, (*_said(requirement, facts, found, decisions), *remarks))
-
-
-def required_activities(requirement: Requirement, workspace: Workspace) -> Sequence[Activity]:
-    """Return the planned activities, or the default one that every requirement has until somebody plans one."""
-    known = workspace.snapshot.activities_of.get(code_key(requirement.id), ())
-    planned = [activity for activity in known if activity.planned]
-    if planned:
-        return planned
-    return known[:1] or (
-        Activity(
-            id=f"{requirement.id}/default", requirement=requirement.id, tier=requirement.tier, planned=False
-        ),
-    )
 
 
 def own_facts(
