@@ -16,7 +16,7 @@ from specflow.conditions.axes import Axis, Floats, NumericAxis, TextAxis
 from specflow.conditions.points import LARGEST_KEY, Points
 from specflow.conditions.recorded import recorded_words, recording_note, spans_in
 from specflow.conditions.search import nearest_points
-from specflow.model.columns import Columns
+from specflow.model.columns import Columns, Spans
 
 Rows = NDArray[np.int32]
 _NONE = np.zeros(0, np.int32)
@@ -29,7 +29,8 @@ class Matching:
 
     ``along`` is the actual value along the range, None where the points are single values. ``ambiguous`` are
     the records within the tolerance of several points. ``notes`` say which units were converted or could not
-    be. ``whole``: pairs whose record speaks for the whole range (a derived value); None where none does.
+    be. ``until``: where what a record speaks for ends along the range (a value derived over a part of it, the floor of
+    a scan); None where each speaks for its own value. ``silent``: pairs that prove no part of a range (a listed peak).
     """
 
     record: Rows
@@ -37,7 +38,8 @@ class Matching:
     along: Floats | None
     ambiguous: Rows
     notes: tuple[str, ...] = ()
-    whole: NDArray[np.bool_] | None = None
+    until: Floats | None = None
+    silent: NDArray[np.bool_] | None = None
 
 
 def match(points: Points, records: Columns) -> Matching:
@@ -54,7 +56,7 @@ def match(points: Points, records: Columns) -> Matching:
         nobody = np.zeros(0, np.intp), np.zeros(0, np.int32)
         record, point, ambiguous = _search_crowded(points, seen, *nobody, everyone)
     found = _sorted(points, seen, record, point, ambiguous.astype(np.int32), notes)
-    return replace(found, whole=_whole(points, records, found.record)) if records.spans else found
+    return _with_extents(points, records, found) if records.spans else found
 
 
 def unstated_conditions(points: Points, records: Columns) -> dict[str, Rows]:
@@ -83,27 +85,42 @@ def _read(axes: tuple[Axis, ...], records: Columns) -> list[Floats] | None:
 
 
 def _with_spans(axis: Axis, records: Columns, actual: Floats | None) -> Floats | None:
-    """Place the records that speak for a whole required range at its lower end."""
-    speaks = _speaks_for(axis, records)
-    if speaks is None or not speaks.any():
+    """Place the records that speak for a part of a required range at the lower end of that part."""
+    spans = _spans_within(axis, records)
+    if spans is None or np.isnan(spans.low).all():
         return actual
-    assert isinstance(axis, NumericAxis) and axis.extent is not None
-    start = axis.extent.low
-    return np.where(speaks, start, np.full(records.size, np.nan) if actual is None else actual)
+    alone = np.full(records.size, np.nan) if actual is None else actual
+    return np.where(np.isnan(spans.low), alone, spans.low)
 
 
-def _speaks_for(axis: Axis, records: Columns) -> NDArray[np.bool_] | None:
-    """Return which records speak for all of a range: from end to end, with no gap above its step; None for no range."""
+def _spans_within(axis: Axis, records: Columns) -> Spans | None:
+    """Return the part of a range that each record speaks for, with no gap above its step (NaN: none)."""
     if not isinstance(axis, NumericAxis) or axis.extent is None or axis.extent.turn:
         return None
     extent, spans = axis.extent, spans_in(records.spans.get(axis.name), axis.unit, records.size)
     gap = np.inf if extent.largest_gap is None else extent.largest_gap
-    return np.asarray((spans.low <= extent.start_by) & (spans.high >= extent.end_from) & (spans.gap <= gap))
+    speaks = (spans.low <= max(extent.high, extent.end_from)) & (
+        spans.high >= min(extent.low, extent.start_by)
+    )
+    speaks &= spans.gap <= gap
+    low = np.where(speaks, np.clip(spans.low, extent.low, extent.high), np.nan)
+    high = np.where(speaks, np.clip(spans.high, extent.low, extent.high), np.nan)
+    return Spans(low, high, spans.gap, axis.unit)
 
 
-def _whole(points: Points, records: Columns, record: Rows) -> NDArray[np.bool_] | None:
-    speaks = None if points.range_axis is None else _speaks_for(points.range_axis, records)
-    return None if speaks is None else speaks[record]
+def _with_extents(points: Points, records: Columns, found: Matching) -> Matching:
+    """Add how far along the range each record speaks, and which prove no part of it."""
+    axis = points.range_axis
+    spans = _spans_within(axis, records) if isinstance(axis, NumericAxis) else None
+    if not isinstance(axis, NumericAxis) or spans is None or found.along is None:
+        return found
+    high = spans.high[found.record]
+    silent = records.spans[axis.name].silent if axis.name in records.spans else None
+    return replace(
+        found,
+        until=np.where(np.isnan(high), found.along, np.maximum(high, found.along)),
+        silent=None if silent is None else silent[found.record],
+    )
 
 
 def _by_key(

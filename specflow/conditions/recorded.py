@@ -51,9 +51,9 @@ def spans_in(spans: Spans | None, unit: str, size: int) -> Spans:
         return spans
     step, difference = conversion(spans.unit, unit), conversion(spans.unit, unit, difference=True)
     if isinstance(step, str) or isinstance(difference, str):
-        return Spans(nothing, nothing, nothing, unit)
+        return Spans(nothing, nothing, nothing, unit, spans.silent)
     low, high, gap = step(spans.low), step(spans.high), difference(spans.gap)
-    return Spans(np.asarray(low), np.asarray(high), np.asarray(gap), unit)
+    return Spans(np.asarray(low), np.asarray(high), np.asarray(gap), unit, spans.silent)
 
 
 def recorded_words(records: Columns, name: str) -> TextColumn | None:

@@ -44,16 +44,21 @@ class TextColumn:
 
 @dataclass(frozen=True, slots=True)
 class Spans:
-    """What each row speaks for along one dimension: ``low`` to ``high`` with no gap above ``gap``; NaN for nothing."""
+    """What each row speaks for along one dimension: ``low`` to ``high`` with no gap above ``gap``; NaN for nothing.
+
+    ``silent`` rows prove no part of a range, not even their own value (a peak of a list); None where there are none.
+    """
 
     low: NDArray[np.float64]
     high: NDArray[np.float64]
     gap: NDArray[np.float64]
     unit: str = ""
+    silent: NDArray[np.bool_] | None = None
 
     def take(self, rows: NDArray[np.intp]) -> Spans:
         """Return the rows asked for, in that order."""
-        return Spans(self.low[rows], self.high[rows], self.gap[rows], self.unit)
+        silent = None if self.silent is None else self.silent[rows]
+        return Spans(self.low[rows], self.high[rows], self.gap[rows], self.unit, silent)
 
 
 @dataclass(frozen=True, slots=True)

@@ -47,7 +47,12 @@ def _stacked_spans(parts: Sequence[Columns]) -> dict[str, Spans]:
 def _spans_in(parts: Sequence[Columns], name: str, unit: str) -> Spans:
     found = [spans_in(part.spans.get(name), unit, part.size) for part in parts]
     low, high, gap = (np.concatenate([getattr(one, end) for one in found]) for end in ("low", "high", "gap"))
-    return Spans(low, high, gap, unit)
+    silent = None
+    if any(one.silent is not None for one in found):
+        silent = np.concatenate(
+            [np.zeros(len(one.low), bool) if one.silent is None else one.silent for one in found]
+        )
+    return Spans(low, high, gap, unit, silent)
 
 
 def speaking(covers: Sequence[Covered], columns: EvidenceColumns) -> EvidenceColumns:
