@@ -44,7 +44,8 @@ class Outcome:
     ``value`` (m,) and, where results are intervals, ``high`` (m,) in ``unit``. ``rows`` (m,): the row of the samples
     that governs each result; ``at``: where that is, in words, where the axis value of the row does not say it.
     ``u`` (m,) in the tolerance unit, with ``u_rule`` ("that of the governing reading"); None where the law knows no
-    rule. ``axes``: conditions that each result of a trace keeps. ``notes`` are sentences for the person.
+    rule. ``axes``: conditions that each result of a trace keeps, ``axis_units`` of
+    those that no reading has. ``notes`` are sentences for the person.
     """
 
     value: Floats
@@ -56,6 +57,7 @@ class Outcome:
     u_rule: str = ""
     axes: Mapping[str, Floats] = field(default_factory=dict)
     notes: tuple[str, ...] = ()
+    axis_units: Mapping[str, str] = field(default_factory=dict)
 
 
 def single(
@@ -84,7 +86,8 @@ class Law:
     ``takes_bounds``: readings that are intervals ("< -90") may enter. ``takes_repeats``: several readings at one
     axis value may. ``statistic``: what the result is called where it is of the same parameter as the readings ("" where
     it is a reading like the others; "{of}" takes a setting). ``brackets``: the law interpolates, so the reading beyond
-    each end of the range enters, too, and the ends need only be bracketed.
+    each end of the range enters, too, and the ends need only be bracketed. ``keeps_parameter``: without ``--gives`` the
+    result is of the parameter of the readings.
     """
 
     name: str
@@ -98,6 +101,7 @@ class Law:
     takes_bounds: bool = False
     takes_repeats: bool = False
     brackets: bool = False
+    keeps_parameter: bool = False
     statistic: str = ""
     version: int = 1
 

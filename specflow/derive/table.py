@@ -319,7 +319,9 @@ def _conditions(rows: Joined, apart: set[str], governing: Rows, outcomes: Sequen
     units = {name: unit for name, unit in kept.units.items() if name in numeric}
     for name in dict.fromkeys(name for outcome in outcomes for name in outcome.axes):
         numeric[name] = np.concatenate([outcome.axes[name] for outcome in outcomes])
-        units[name] = rows.said_units.get(name, rows.conditions.units.get(name, ""))
+        own = next((outcome.axis_units[name] for outcome in outcomes if name in outcome.axis_units), None)
+        stated = rows.said_units.get(name, rows.conditions.units.get(name, ""))
+        units[name] = stated if own is None else own
     return Columns(len(governing), numeric, text, units)
 
 

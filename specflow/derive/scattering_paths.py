@@ -1,0 +1,146 @@
+"""Laws of several scattering parameters at once: imbalance of two paths, active reflection of an array over scan."""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.calculators.active_reflection import active_reflection, line_excitation
+from specflow.calculators.decibel import LIGHT
+from specflow.derive.law import Law, Outcome, Setting
+from specflow.derive.said import read_over
+from specflow.derive.samples import Samples
+from specflow.derive.scattering import ENTRY, entry, magnitude_db, row_by_row
+from specflow.errors import CalculationError
+from specflow.units import convert, parse_unit
+
+Floats = NDArray[np.float64]
+Complexes = NDArray[np.complex128]
+
+OTHER = ("other first", "other second")
+_TWO = (
+    "the columns of two scattering parameters from one port, of one file or of two with the same frequencies"
+)
+MOST_SCANS = 721
+
+
+def amplitude_imbalance(samples: Samples) -> Outcome:
+    """Return how much stronger the first path is than the other, in dB.
+
+    Formula: 20·log10 |S| - 20·log10 |S other|.
+    Valid: both from one input, at the same frequencies.
+    Source: definition; the sign is first minus other.
+    """
+    return row_by_row(magnitude_db(samples) - magnitude_db(samples, OTHER), "dB")
+
+
+def phase_imbalance(samples: Samples) -> Outcome:
+    """Return the phase of the first path against the other, less the nominal difference, in degrees.
+
+    Formula: arg(S/S other) - nominal, brought between -180 and 180 degrees.
+    Valid: both from one input, at the same frequencies. The nominal difference is 90 deg for a quadrature hybrid.
+    Source: definition; the sign is first minus other.
+    """
+    nominal = samples.number("nominal")
+    difference: Complexes = (
+        entry(samples) * np.conj(entry(samples, OTHER)) * np.exp(-1j * np.deg2rad(nominal))
+    )
+    if (difference == 0).any():
+        raise CalculationError(
+            "an entry is zero at some place, which has no phase", hint="choose a range without it"
+        )
+    value: Floats = np.rad2deg(np.angle(difference))
+    return row_by_row(value, "deg")
+
+
+def row_roles(ports: int) -> list[tuple[str, str]]:
+    """Return the roles of all entries of a network of n ports, row by row: "first of S1_2", "second of S1_2"."""
+    numbers = range(1, ports + 1)
+    return [(f"first of S{m}_{n}", f"second of S{m}_{n}") for m in numbers for n in numbers]
+
+
+def scan_reflection(samples: Samples) -> Outcome:
+    """Return the largest active reflection of the elements of a line array in dB, over frequency and scan angle.
+
+    Formula: Γ_m = Σ_n S_mn·a_n/a_m with a_n = exp(-j·2π·(d/λ)·n·sin θ); 20·log10 of the largest |Γ_m|.
+    Valid: the ports of the file are the elements of a uniform line in their order, all driven alike, every other port
+    of the file none; scan in the plane of the line.
+    Source: definition as in scikit-rf ``s_active``; path difference.
+    """
+    ports = round((len(samples.values) / 2) ** 0.5)
+    roles = row_roles(ports)
+    if {name for pair in roles for name in pair} != set(samples.values):
+        raise CalculationError(
+            "an active reflection needs every entry of the network", hint="attach the network file with it"
+        )
+    if (samples.axis, parse_unit(samples.axis_unit or "1").dimension) != (
+        "frequency",
+        parse_unit("Hz").dimension,
+    ):
+        raise CalculationError(f"the axis is {samples.axis}", hint="element spacings need the frequency")
+    matrix = np.stack([entry(samples, pair) for pair in roles], axis=-1).reshape(-1, ports, ports)
+    scans = _scan_angles(samples.word("scan"))
+    frequency = convert(samples.along, parse_unit(samples.axis_unit), parse_unit("Hz"))
+    spacing = samples.number("spacing") * frequency / LIGHT
+    worst = np.empty((len(frequency), len(scans)))
+    element = np.empty(worst.shape, np.intp)
+    for place in range(len(frequency)):
+        excitation = line_excitation(ports, float(spacing[place]), scans)
+        size = np.abs(active_reflection(matrix[place], excitation))
+        element[place] = np.argmax(size, axis=-1)
+        worst[place] = np.max(size, axis=-1)
+    if (worst == 0).any():
+        raise CalculationError(
+            "an active reflection is zero, which has no value in dB", hint="look at the entries"
+        )
+    value: Floats = 20.0 * np.log10(worst).ravel()
+    rows = np.repeat(np.arange(len(frequency), dtype=np.intp), len(scans))
+    at = tuple(
+        f"{samples.along[row]:.10g} {samples.axis_unit}, scan {scans[place]:g} deg, element {element[row, place] + 1}"
+        for row in range(len(frequency))
+        for place in range(len(scans))
+    )
+    axes = {samples.axis: samples.along[rows], "scan_theta": np.tile(scans, len(frequency))}
+    return Outcome(value, "dB", rows, at=at, axes=axes, axis_units={"scan_theta": "deg"})
+
+
+def _scan_angles(text: str) -> Floats:
+    """The angles of "-60..60 step 5 deg"."""
+    said = read_over(f"scan_theta: {text}")
+    span = said.range
+    if span.step is None:
+        raise CalculationError(f"the scan {text!r} states no step", hint="write it as -60..60 deg step 5 deg")
+    count = int(np.floor((span.high - span.low) / span.step + 1e-9)) + 1
+    if count > MOST_SCANS:
+        raise CalculationError(f"the scan has {count} angles", hint=f"at most {MOST_SCANS}")
+    angles = span.low + span.step * np.arange(count)
+    ends = [span.high] if span.high - angles[-1] > 1e-9 else []
+    return np.asarray([*angles.tolist(), *ends], np.float64)
+
+
+PATH_LAWS: tuple[Law, ...] = (
+    Law("amplitude imbalance", "amplitude of one path against another", amplitude_imbalance, over="each", needs=_TWO,
+        roles=(*ENTRY, *OTHER), gives=("amplitude_imbalance",)),
+    Law(
+        "phase imbalance",
+        "phase of one path against another",
+        phase_imbalance,
+        over="each",
+        needs=_TWO,
+        roles=(*ENTRY, *OTHER),
+        settings=(Setting("nominal", "the difference that is meant to be there", "0 deg", "deg"),),
+        gives=("phase_imbalance",),
+    ),
+    Law(
+        "active reflection",
+        "largest active reflection of a line array over frequency and scan",
+        scan_reflection,
+        needs="every entry of a network whose ports are the elements of a line",
+        roles=(),
+        settings=(
+            Setting("spacing", "distance between neighbouring elements", None, "m"),
+            Setting("scan", "the angles, as in -60..60 deg step 5 deg", None, is_text=True),
+        ),
+        gives=("active_reflection",),
+    ),
+)  # fmt: skip
