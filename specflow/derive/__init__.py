@@ -15,13 +15,29 @@ formula, validity and source in its docstring, and list it in the table of its f
 
 from __future__ import annotations
 
+from specflow.derive.cuts import CUT_LAWS
 from specflow.derive.edges import EDGE_LAWS
 from specflow.derive.law import Law, Outcome, Setting
+from specflow.derive.phase_noise import PHASE_NOISE_LAWS
+from specflow.derive.pointwise import POINTWISE_LAWS
+from specflow.derive.power_sweep import SWEEP_LAWS
 from specflow.derive.ranges import RANGE_LAWS
 from specflow.derive.said import complete_settings
+from specflow.derive.samples import Readings, Samples
+from specflow.derive.scattering_laws import SCATTERING_LAWS
+from specflow.derive.sphere import SPHERE_LAWS
 from specflow.derive.table import Derived, Refused, Request, Role, derive_table
 
-LAWS: tuple[Law, ...] = (*RANGE_LAWS, *EDGE_LAWS)
+LAWS: tuple[Law, ...] = (
+    *RANGE_LAWS,
+    *EDGE_LAWS,
+    *POINTWISE_LAWS,
+    *SWEEP_LAWS,
+    *PHASE_NOISE_LAWS,
+    *CUT_LAWS,
+    *SPHERE_LAWS,
+    *SCATTERING_LAWS,
+)
 
 LAW_BY_NAME = {law.name: law for law in LAWS}
 

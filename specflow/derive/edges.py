@@ -232,5 +232,6 @@ EDGE_LAWS: tuple[Law, ...] = (
             Setting("scale", "the axis that is linear", "linear", choices=("linear", "log")),
         ),
         brackets=True,
+        keeps_parameter=True,
     ),
 )

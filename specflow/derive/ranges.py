@@ -202,6 +202,7 @@ RANGE_LAWS: tuple[Law, ...] = (
         "the worst reading over a range",
         worst,
         settings=(_SIDE,),
+        keeps_parameter=True,
         statistic="worst",
         takes_bounds=True,
         takes_repeats=True,
@@ -214,6 +215,7 @@ RANGE_LAWS: tuple[Law, ...] = (
             Setting("of", "what is averaged", choices=("power", "dB", "amplitude", "values")),
             Setting("weights", "what a reading counts", "readings", choices=("readings", "axis")),
         ),
+        keeps_parameter=True,
         statistic="mean of {of}",
     ),
     Law(
@@ -224,6 +226,7 @@ RANGE_LAWS: tuple[Law, ...] = (
             Setting("percentile", "the percentage, as 50"),
             Setting("of", "of which distribution", "CDF", choices=("CDF", "CCDF")),
         ),
+        keeps_parameter=True,
         statistic="percentile",
         takes_repeats=True,
     ),

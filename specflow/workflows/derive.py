@@ -277,7 +277,7 @@ def _quantity(
         ):
             _refuse_hidden(requirement, dictionary, law, settings)
         return quantity
-    key = dictionary.resolve(options.gives).key if options.gives else own.parameter
+    key = dictionary.resolve(options.gives).key if options.gives else _usual(law, own.parameter)
     parameter = dictionary.get(key)
     if parameter is None:
         raise DocumentError(f"{key} is no known parameter", hint="say --gives PARAMETER")
@@ -291,6 +291,19 @@ def _quantity(
         statistic=options.statistic or named,
         bandwidth_hz=own.bandwidth_hz if same else None,
         polarisation=options.polarisation or own.polarisation,
+    )
+
+
+def _usual(law: Law, own: str) -> str:
+    """Return the parameter of a result about which nothing was said."""
+    if law.keeps_parameter:
+        return own
+    if len(law.gives) == 1:
+        return law.gives[0]
+    usual = f"; usual: {', '.join(law.gives)}" if law.gives else ""
+    raise DocumentError(
+        f"it is not said of what parameter the result of the law {law.name} is",
+        hint=f"say --gives PARAMETER, or --for REQUIREMENT{usual}",
     )
 
 
