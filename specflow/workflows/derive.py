@@ -99,7 +99,14 @@ def preview_in(snapshot: Snapshot, dictionary: Dictionary, options: DeriveOption
     if parameter is None:
         raise DocumentError(f"{quantity.parameter} is no known parameter", where=options.requirement)
     request = Request(law, roles, settings, parameter, tuple(options.over), tuple(options.where))
-    derived = derive_table(request)
+    return preview_of(snapshot, request, quantity)
+
+
+def preview_of(
+    snapshot: Snapshot, request: Request, quantity: QuantityIdentity, derived: Derived | None = None
+) -> DerivePreview:
+    """Return the preview of a request; ``derived`` where its law was applied already."""
+    derived = derived or derive_table(request)
     derivation = _derivation(request, quantity, derived)
     table = _table(snapshot, request, quantity, derived, derivation)
     known = {one.digest: one.id for one in snapshot.tables if one.digest and one.derivation}
