@@ -118,12 +118,14 @@ class EvidenceTable(Document):
     """One recorded table of one source file, or one derived from such tables.
 
     A derived table (``derivation``) keeps the file of its input, its rows point to the raw rows that govern, and
-    ``covers`` says over which ranges its values were taken.
+    ``covers`` says over which ranges its values were taken. ``turned``: the table lies on its side in its sheet, so that
+    ``source_rows`` count columns of the sheet and ``ValueColumn.column`` its rows (``cell`` gives the true place).
     """
 
     id: Code
     file: Code
     sheet: str = ""
+    turned: bool = False
     title: str = ""
     block: Code
     requirement: Code | None = None
@@ -155,6 +157,10 @@ class EvidenceTable(Document):
     derivation: Code | None = None
     covers: tuple[Covered, ...] = ()
     revision: int = 1
+
+    def cell(self, row: int, column: int) -> tuple[int, int]:
+        """Row and column in the sheet of the cell that stands at (source row, value column) of the table."""
+        return (column, row) if self.turned else (row, column)
 
 
 class Equipment(Document):

@@ -50,12 +50,14 @@ class OriginFinder:
         table = self.table(record.table)
         file = self._snapshot.find(EvidenceFile, table.file)
         below = self.column(record).lines_below
+        source_row = int(self.columns(record.table).source_rows[record.row]) + below
+        row, column = table.cell(source_row, self._column_number(record))
         return Origin(
             file=file.name if file else table.file,
             sha256=file.sha256 if file else "",
             sheet=table.sheet,
-            row=int(self.columns(record.table).source_rows[record.row]) + below,
-            column=self._column_number(record),
+            row=row,
+            column=column,
         )
 
     def _column_number(self, record: RecordRef) -> int:

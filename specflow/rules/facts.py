@@ -180,6 +180,8 @@ class Facts:
         row = int(columns.source_rows[record.row]) + (value.lines_below if value else 0)
         if SOURCE_COLUMN in columns.extra:  # values of several columns were stacked
             column = column_number(columns.extra[SOURCE_COLUMN].word(record.row))
+        if column is not None:
+            row, column = table.cell(row, column)
         return self.place(table).model_copy(update={"row": row, "column": column})
 
     def place(self, table: EvidenceTable) -> Origin:

@@ -11,7 +11,6 @@ from specflow.importers.measured.readings import Spelled
 from specflow.importers.measured.result import ColumnReading, Question, Role
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.measured.unit_source import FoundUnit, find_unit
-from specflow.importers.readers import column_letter
 from specflow.model.evidence import SpectrumKind
 from specflow.model.parameter import Parameter, QuantityIdentity
 
@@ -59,7 +58,7 @@ class ColumnMeaning:
     @property
     def letter(self) -> str:
         """The column letter."""
-        return column_letter(self.header.column)
+        return self.header.letter
 
     def words(self) -> str:
         """The meaning in words."""
@@ -78,7 +77,7 @@ class ColumnMeaning:
 
     def asks(self, what: str, remedy: str) -> Question:
         """A question about this column."""
-        return Question(self.header.text, self.header.cell, f"column {self.letter}: {what}", remedy)
+        return Question(self.header.text, self.header.cell, f"{self.header.line}: {what}", remedy)
 
 
 @dataclass(frozen=True, slots=True)
@@ -94,7 +93,7 @@ class Heading:
     @property
     def letter(self) -> str:
         """The column letter."""
-        return column_letter(self.header.column)
+        return self.header.letter
 
     def unit(self) -> FoundUnit:
         """The unit of the column, and where it stands."""

@@ -16,7 +16,6 @@ from specflow.importers.measured.result import Question, Role
 from specflow.importers.measured.stated import Stated
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.measured.words import fill_down, read_words
-from specflow.importers.readers import address, column_letter
 from specflow.model.columns import Columns, TextColumn
 from specflow.model.evidence import ConditionColumn
 from specflow.units import format_unit, parse_unit
@@ -57,7 +56,7 @@ def read_conditions(
             blank = int(np.count_nonzero(np.isnan(values)))
         if blank:
             read.notes.append(
-                f"column {meaning.letter} states no {name.replace('_', ' ')} in {blank} of {len(rows)} rows"
+                f"{meaning.header.line} states no {name.replace('_', ' ')} in {blank} of {len(rows)} rows"
                 + ("" if meaning.fill_down else "; fill_down = true in a mapping takes the cell above")
             )
         read.documents.append(_document(meaning, units.get(name, "")))
@@ -72,12 +71,11 @@ def _numbers(
     numbers = read_numbers(table, meaning.column, meaning.spelled, rows, own)
     rejects.cells += own.cells
     if numbers.problem:
-        letter = column_letter(meaning.column)
         remedy = "give the whole column one number format, and attach again"
         read.questions.append(
-            Question(meaning.header.text, meaning.header.cell, f"column {letter}: {numbers.problem}", remedy)
+            Question(meaning.header.text, meaning.header.cell, f"{meaning.header.line}: {numbers.problem}", remedy)
         )
-    read.notes += [f"column {column_letter(meaning.column)}: {note}" for note in numbers.notes]
+    read.notes += [f"{meaning.header.line}: {note}" for note in numbers.notes]
     values = numbers.low
     if numbers.high is not numbers.low:
         for place in np.flatnonzero(numbers.high != numbers.low).tolist():
@@ -105,7 +103,7 @@ def _merged_spans(table: FoundTable, column: int, rows: Rows) -> list[tuple[int,
                     (
                         int(anchor[0]),
                         others,
-                        f"{address(area.first_row, column)}:{address(area.last_row, column)}",
+                        f"{table.grid.address(area.first_row, column)}:{table.grid.address(area.last_row, column)}",
                     )
                 )
     return spans

@@ -12,7 +12,7 @@ from specflow.importers.measured.result import Role
 from specflow.importers.measured.roles import role_of_words, uncertainty_of
 from specflow.importers.measured.stated import Said, Stated
 from specflow.importers.measured.tables import FoundTable
-from specflow.importers.readers import column_letter, is_blank, looks_numeric
+from specflow.importers.readers import is_blank, looks_numeric
 
 _OF_THE_TABLE = frozenset(
     [
@@ -53,7 +53,7 @@ def read_constants(table: FoundTable, mapping: LayoutMapping, stated: Stated) ->
         name = name_of(parts.name)
         if name not in _OF_THE_TABLE or role_of_words(parts) or uncertainty_of(parts):
             continue
-        mapped = mapping.column(header.text, column_letter(header.column))
+        mapped = mapping.column(header.text, header.letter)
         if mapped is not None and (mapped.role or mapped.parameter or mapped.dimension):
             continue
         words = {
@@ -72,7 +72,7 @@ def read_constants(table: FoundTable, mapping: LayoutMapping, stated: Stated) ->
             unit = parts.unit or header.unit
             text = f"{text} {unit}" if unit and looks_numeric(text) else text
             stated.said.setdefault(
-                name, Said(text, f"stated in column {column_letter(header.column)}", parts.name)
+                name, Said(text, f"stated in {header.line}", parts.name)
             )
             found[header.column] = ConstantColumn(role, f"the {name.replace('_', ' ')} of the table: {text}")
     return found

@@ -22,7 +22,7 @@ from specflow.model.requirement import Method, Requirement, Stage
 PROVISIONAL_TABLE, PROVISIONAL_FILE = "EV-0", "F-0"
 
 _NOT_CONTENT = {"id", "file", "digest", "mapping", "mapping_revision", "accepted_by", "accepted_at", "provisional",
-                "revision", "left_out", "title", "sheet", "how_read", "derivation", "covers"}  # fmt: skip
+                "revision", "left_out", "title", "sheet", "turned", "how_read", "derivation", "covers"}  # fmt: skip
 
 
 @dataclass(frozen=True, slots=True)
@@ -51,6 +51,7 @@ def make_document(
             id=PROVISIONAL_TABLE,
             file=PROVISIONAL_FILE,
             sheet=identity.sheet,
+            turned=work.table.grid.turned,
             title=identity.title[:200],
             block=identity.block.id,
             requirement=_requirement(work),
@@ -102,6 +103,7 @@ def content_digest(table: EvidenceTable, columns: EvidenceColumns) -> str:
 def _table_key(work: TableWork, identity: Identity) -> str:
     """What says that a later table is the same one again: layout, sheet, block, and who measured it on which set-up."""
     parts = [identity.sheet, identity.block.id, work.stated.text("set_up"), work.stated.text("performer")]
+    parts += [work.table.part] if work.table.part else []
     return "T-" + digest([identity.layout_key, *(part.casefold() for part in parts)])[:16]
 
 

@@ -15,7 +15,7 @@ from specflow.importers.measured.facts import states_something
 from specflow.importers.measured.header_text import header_key
 from specflow.importers.measured.located import LocatedTable
 from specflow.importers.measured.meaning import read_meanings
-from specflow.importers.measured.pivot import stack
+from specflow.importers.measured.pivot import stack, with_location
 from specflow.importers.measured.rejects import Rejects
 from specflow.importers.measured.result import ColumnReading, MeasuredTable, Question, Role
 from specflow.importers.measured.selection import select_rows
@@ -51,11 +51,13 @@ def read_table(located: LocatedTable, context: Context, person: Mapping[str, str
     """Read one table; it has no document while a question is open or when no row is left."""
     table, mapping, key = located.table, located.read_as, located.key
     stated = collected(located, context, person)
+    settled = with_location(mapping, stated)
+    mapping = mapping if isinstance(settled, Question) else settled
     sheet = "" if table.grid.name == table.grid.file else table.grid.name
-    rejects = Rejects(sheet, keep_placeholders=mapping.keep_placeholders)
+    rejects = Rejects(sheet, table.grid.turned, keep_placeholders=mapping.keep_placeholders)
     work = TableWork(table, context, mapping, stated, rejects)
     work.notes += [*table.notes, *(remark.words for remark in table.stepped_over)]
-    work.questions += table.doubts
+    work.questions += [*table.doubts, *([settled] if isinstance(settled, Question) else [])]
     _ask_about_remarks(work)
     _ask_about_groups(work)
     work.meanings = read_meanings(table, context, mapping, stated)
@@ -144,7 +146,7 @@ def _ask_about_columns(work: TableWork) -> None:
     table = work.table
     for header in table.headers:
         if header.column in table.grid.hidden_columns:
-            work.notes.append(f"column {header.letter} is hidden in the file; it was read all the same")
+            work.notes.append(f"{header.line} is hidden in the file; it was read all the same")
     if _lies_on_its_side(work):
         remedy = "turn it (copy, paste special, transpose): one row of headers, one reading a row"
         what = "the table lies on its side, with its headers in the first column"

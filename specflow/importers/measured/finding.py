@@ -1,12 +1,60 @@
-"""All tables of a sheet, however they lie."""
+"""All tables of a sheet, however they lie: beside each other, on their side, with numbers as headers, without headers."""
 
 from __future__ import annotations
 
+from collections.abc import Iterator
+from dataclasses import replace
+
+from specflow.importers.measured.beside import strips_of
+from specflow.importers.measured.blocks import block_table, find_block, is_far_from
 from specflow.importers.measured.context import Context
-from specflow.importers.measured.tables import FoundTable, find_tables
+from specflow.importers.measured.corner import find_number_row, table_under
+from specflow.importers.measured.sideways import find_sideways
+from specflow.importers.measured.tables import FoundTable, cut_table, find_header
 from specflow.importers.readers import Grid
+
+_ROWS_BELOW = 2
 
 
 def find_all(grid: Grid, context: Context) -> tuple[FoundTable, ...]:
-    """Return the tables of a sheet, from top to bottom and from left to right."""
-    return find_tables(grid, context.recognises)
+    """Return the tables of a sheet, from left to right and from top to bottom."""
+    strips = strips_of(grid, context)
+    found = [table for strip in strips.grids for table in _below_each_other(strip, context)]
+    if strips.doubt is not None and found:
+        found[0] = replace(found[0], doubts=(*found[0].doubts, strips.doubt))
+    return tuple(found)
+
+
+def _below_each_other(grid: Grid, context: Context) -> Iterator[FoundTable]:
+    top = grid.first_row
+    while top <= grid.last_row:
+        found = _next(grid, top, context)
+        if found is None:
+            return
+        table, below = found
+        yield table
+        top = max(below, top + 1)
+
+
+def _next(grid: Grid, top: int, context: Context) -> tuple[FoundTable, int] | None:
+    """The next table in the rows from ``top`` on, and the row below it."""
+    header = find_header(grid, top, context.recognises)
+    row = None if header is None else header.row
+    certain = header is not None and header.is_known
+    stop = grid.last_row + 1 if row is None or not certain else row
+    side = find_sideways(grid, top, stop, context, is_only=row is None and top == grid.first_row)
+    if side is not None and (row is None or side[0].grid.first_column <= row or not certain):
+        return side
+    reach = grid.last_row + 1 if row is None else row + _ROWS_BELOW + 1
+    numbers = find_number_row(grid, top, reach, context)
+    if numbers is not None:
+        table = table_under(grid, top, numbers, context)
+        return table, table.stop_row
+    block = find_block(grid, top, grid.last_row + 1) if row is None or grid.is_text else None
+    if block is not None and (row is None or block < row or is_far_from(grid, row, block)):
+        table = block_table(grid, top, block, context)
+        return table, table.stop_row
+    if row is None:
+        return None
+    table = cut_table(grid, top, row, 1, context.recognises)
+    return table, table.stop_row

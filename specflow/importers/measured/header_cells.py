@@ -38,6 +38,11 @@ class HeaderCell:
         """The name of its column: its letter; the number of the true row where the table is turned."""
         return str(self.column) if self.turned else column_letter(self.column)
 
+    @property
+    def line(self) -> str:
+        """Its column as people say it: "column C"; "row 3" where the table is turned."""
+        return f"{'row' if self.turned else 'column'} {self.letter}"
+
 
 def has_second_row(grid: Grid, row: int) -> bool:
     """Whether the row below tells apart the columns over which a header is merged: Gain over Min, Typ, Max."""

@@ -14,6 +14,10 @@ from specflow.importers.measured.header_text import header_key
 from specflow.importers.readers import column_number
 
 
+#: The temperature of headers that do not say whose it is: the person states the location.
+UNLOCATED = "temperature"
+
+
 @dataclass(frozen=True, slots=True)
 class ColumnMapping:
     """How one column is read. Empty means: as recognised. ``of`` is the header of the column that an uncertainty is of.

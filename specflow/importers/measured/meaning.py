@@ -39,7 +39,6 @@ from specflow.importers.measured.stated import PERSON, Stated
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.measured.unit_source import FoundUnit, find_unit
 from specflow.importers.measured.value_column import mapped_value, named_value
-from specflow.importers.readers import column_letter
 from specflow.units import compatible, parse_unit
 
 _READING_AS_TEXT = re.compile(r"^\s*[<>≤≥]\s*[+\-−]?[0-9]")
@@ -86,12 +85,12 @@ class _Reader:
         return ColumnMeaning(header, meaning.parts, Role.NOT_READ, reason, of_file=True)
 
     def _entry(self, header: HeaderCell) -> ColumnMapping:
-        mapped = self._mapping.column(header.text, column_letter(header.column))
+        mapped = self._mapping.column(header.text, header.letter)
         return self._said(header) or mapped or ColumnMapping()
 
     def _read(self, header: HeaderCell) -> ColumnMeaning:
         said = self._said(header)
-        mapped = said or self._mapping.column(header.text, column_letter(header.column))
+        mapped = said or self._mapping.column(header.text, header.letter)
         by = PERSON if said else "the mapping"
         heading = Heading(self._table, header, read_header(header.text), mapped or ColumnMapping(), by)
         if mapped is not None and (mapped.role or mapped.parameter or mapped.dimension):
@@ -114,7 +113,7 @@ class _Reader:
 
     def _said(self, header: HeaderCell) -> ColumnMapping | None:
         """What the person says of this column: a role, a dimension or a parameter, perhaps "in" a unit."""
-        letter = column_letter(header.column)
+        letter = header.letter
         for key, text in self._stated.columns.items():
             if key.upper() == letter or header_key(key) == header_key(header.text):
                 what, _, unit = (part.strip() for part in text.partition(" in "))

@@ -30,9 +30,17 @@ def parts_of(table: FoundTable, mapping: LayoutMapping, context: Context) -> lis
     long = mapping.long or find_long(table, mapping, context)
     if long is not None:
         return long_parts(table, long, read_as, context)
-    if len(mapping.pivots) > 1:
-        return _pivot_parts(table, read_as, context)
-    return [(table, read_as)]
+    pivots = mapping.pivots or (() if _is_settled(mapping) else table.pivots)
+    if mapping.pivots or _is_settled(mapping):
+        table = replace(table, doubts=())
+    if len(pivots) > 1:
+        return _pivot_parts(table, replace(read_as, pivots=pivots), context)
+    return [(table, replace(read_as, pivots=pivots))]
+
+
+def _is_settled(mapping: LayoutMapping) -> bool:
+    """Whether a person said what the columns are; what was recognised of them then does not count."""
+    return any(entry.role or entry.parameter or entry.dimension for entry in mapping.columns)
 
 
 def _without_rows(table: FoundTable, mapping: LayoutMapping) -> FoundTable:

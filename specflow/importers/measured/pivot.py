@@ -7,16 +7,18 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from specflow.conditions import Comparison, known_dimension
+from specflow.conditions import Comparison, find_dimension, known_dimension, unlocated_temperature_hint
 from specflow.errors import UnitError
 from specflow.importers.measured.column import ColumnMeaning, Heading
-from specflow.importers.measured.mapping import ColumnMapping, PivotMapping
+from specflow.importers.measured.mapping_parts import UNLOCATED, ColumnMapping, LayoutMapping, PivotMapping
 from specflow.importers.measured.result import Question, Role
+from specflow.importers.measured.stated import Stated
 from specflow.importers.measured.uncertainty import Spread
 from specflow.importers.measured.unit_source import FoundUnit
 from specflow.importers.measured.value_column import mapped_value
 from specflow.importers.measured.values import column_numbers, value_document
 from specflow.importers.measured.work import TableWork
+from specflow.importers.readers import column_letter
 from specflow.model.columns import Columns, TextColumn
 from specflow.model.evidence import SOURCE_COLUMN, ConditionColumn, EvidenceColumns, ValueArrays, ValueColumn
 from specflow.units import parse_number, parse_unit
@@ -46,6 +48,22 @@ class PivotConditions:
             ConditionColumn(dimension=name, kind="text", header=pivot.header, stated_by="header")
             for name in self.text
         ]
+
+
+def with_location(mapping: LayoutMapping, stated: Stated) -> LayoutMapping | Question:
+    """Say whose temperature the headers of a pivot give, where they only say temperature; a question where unsaid."""
+    pivot = mapping.pivot
+    if pivot is None or UNLOCATED not in pivot.units:
+        return mapping
+    location = stated.text("temperature")
+    dimension = find_dimension(f"{location} temperature") if location else None
+    if dimension is None:
+        what = f"the headers {pivot.columns} give a temperature that does not say whose"
+        remedy = f"{unlocated_temperature_hint()}: --state temperature=ambient"
+        return Question("", pivot.columns, what, remedy)
+    units = {dimension.name if name == UNLOCATED else name: unit for name, unit in pivot.units.items()}
+    header = pivot.header.replace(f"{{{UNLOCATED}}}", f"{{{dimension.name}}}")
+    return replace(mapping, pivots=(replace(pivot, header=header, units=units),))
 
 
 @dataclass(frozen=True, slots=True)
@@ -80,7 +98,7 @@ def stack(work: TableWork, pivot: PivotMapping, columns: EvidenceColumns) -> Sta
     named = headers.text.pop("item", None)
     items = _repeated(columns.items, count) if named is None else _spread(named, len(work.rows))
     extra = {name: _repeated(words, count) for name, words in columns.extra.items()}
-    extra[SOURCE_COLUMN] = _spread([column.letter for column in pivoted], len(work.rows))
+    extra[SOURCE_COLUMN] = _spread([column_letter(column.column) for column in pivoted], len(work.rows))
     stacked = EvidenceColumns(
         _stacked_conditions(columns.conditions, headers, count),
         {value.name: ValueArrays(low, high)},

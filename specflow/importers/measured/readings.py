@@ -19,7 +19,7 @@ from specflow.importers.measured.placeholders import reject_placeholders
 from specflow.importers.measured.rejects import Rejects
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.measured.unit_source import format_runs
-from specflow.importers.readers import Grid, OddKind, OddRun, Value, address, is_blank
+from specflow.importers.readers import Grid, OddKind, OddRun, Value, is_blank
 from specflow.units import (
     ONE,
     PERCENT,
@@ -169,13 +169,14 @@ def _bring_rows(
             continue
         changed = []
         for place in np.flatnonzero(there).tolist():
-            slip = f"no unit beside the reading, in {address(int(rows[place]), beside)}" if not word else ""
+            where = table.grid.address(int(rows[place]), beside)
+            slip = f"no unit beside the reading, in {where}" if not word else ""
             ends = _brought(numbers.low[place], numbers.high[place], written, unit, slip or slip_of(word))
             if isinstance(ends, str):
                 rejects.add(int(rows[place]), column, float(numbers.low[place]), ends)
                 ends = (np.nan, np.nan)
             else:
-                changed.append(address(int(rows[place]), column))
+                changed.append(table.grid.address(int(rows[place]), column))
             numbers.low[place], numbers.high[place] = ends
         if changed:
             numbers.notes.append(_conversion(len(changed), changed[0], str(written), unit))
@@ -273,7 +274,7 @@ class _OddCells:
             return reading.lo, reading.hi
         ends = _brought(reading.lo, reading.hi, written, self.unit, slip_of(str(written)))
         if not isinstance(ends, str):
-            self.brought.setdefault(str(written), []).append(address(row, self.column))
+            self.brought.setdefault(str(written), []).append(self.grid.address(row, self.column))
         return ends
 
 

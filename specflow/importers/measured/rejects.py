@@ -27,17 +27,18 @@ class Rejected:
 class Rejects:
     """What one table has rejected, and blank cells by their reason.
 
-    ``keep_placeholders`` says that -999 and the like are readings of this table.
+    ``turned``: rows and columns of the table have changed places. ``keep_placeholders`` says that -999 and the like are readings of this table.
     """
 
     sheet: str
+    turned: bool = False
     cells: list[Rejected] = field(default_factory=list)
     blank: Counter[str] = field(default_factory=Counter)
     keep_placeholders: bool = False
 
     def apart(self) -> Rejects:
         """Return empty ones of the same table, for cells whose blanks are not counted."""
-        return Rejects(self.sheet, keep_placeholders=self.keep_placeholders)
+        return Rejects(self.sheet, self.turned, keep_placeholders=self.keep_placeholders)
 
     def add(self, row: int, column: int, value: Value, reason: str) -> None:
         """Reject one cell."""
@@ -59,10 +60,13 @@ class Rejects:
         entries.append(self._entry(run[0], run[-1]))
         return tuple(entries)
 
+    def _address(self, one: Rejected) -> str:
+        return address(one.column, one.row) if self.turned else address(one.row, one.column)
+
     def _entry(self, first: Rejected, last: Rejected) -> LeftOut:
-        cell = address(first.row, first.column)
+        cell = self._address(first)
         if last.row != first.row:
-            cell = f"{cell}:{address(last.row, last.column)}"
+            cell = f"{cell}:{self._address(last)}"
         return LeftOut(sheet=self.sheet, cell=cell, text=first.text[:200], reason=first.reason)
 
 

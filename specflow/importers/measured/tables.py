@@ -25,6 +25,7 @@ from specflow.importers.measured.header_cells import (
     with_unit,
 )
 from specflow.importers.measured.header_text import header_key
+from specflow.importers.measured.mapping_parts import PivotMapping
 from specflow.importers.measured.result import Question
 from specflow.importers.measured.statements import is_reading, statement_rows, statement_text
 from specflow.importers.readers import Grid, is_blank, looks_numeric
@@ -76,7 +77,8 @@ class FoundTable:
     hold data, among ``first_row`` up to, not including, ``stop_row``. ``headers`` are named columns in order;
     ``unnamed`` are columns with cells and no header. ``stepped_over`` are rows that are no data, ``between`` those of
     them with data below. ``part`` says which part of a table it is where one was parted (by quantity, by a group of
-    columns), ``facts`` what is said of that part alone; ``axis`` is a condition that no column holds; ``doubts`` are
+    columns), ``facts`` what is said of that part alone; ``axis`` is a condition that no column holds, ``pivots`` are
+    columns of one quantity at several conditions, as their headers say; ``doubts`` are
     questions about where the table stands and how it lies, ``notes`` what is said about that. ``title_rows`` are rows
     above that belong to the headers. ``words_above`` stand for the headers of a table that has none; one without any
     words is not known again (``has_words``).
@@ -96,6 +98,7 @@ class FoundTable:
     part: str = ""
     facts: tuple[Fact, ...] = ()
     axis: Axis | None = None
+    pivots: tuple[PivotMapping, ...] = ()
     doubts: tuple[Question, ...] = ()
     notes: tuple[str, ...] = ()
     title_rows: tuple[int, ...] = ()
@@ -120,12 +123,20 @@ class FoundTable:
         return ":".join(self.grid.address(*corner) for corner in corners)
 
 
+@dataclass(frozen=True, slots=True)
+class HeaderRow:
+    """A row of headers; ``is_known``: its words are known, and it is not merely the best row of words."""
+
+    row: int
+    is_known: bool
+
+
 def find_tables(grid: Grid, recognises: Recognises) -> tuple[FoundTable, ...]:
-    """Return the tables of a sheet from top to bottom; ``recognises`` says whether a header means something."""
+    """Return the tables with a row of headers, from top to bottom; ``recognises`` says whether a header means something."""
     tables = []
     top = grid.first_row
-    while (row := _header_row(grid, top, recognises)) is not None:
-        table = cut_table(grid, top, row, 1, recognises)
+    while (header := find_header(grid, top, recognises)) is not None:
+        table = cut_table(grid, top, header.row, 1, recognises)
         tables.append(table)
         top = table.stop_row
     return tuple(tables)
@@ -155,7 +166,7 @@ def table_below(
     return _Body(grid, headers, first, recognises).table(top, header_row, units_row)
 
 
-def _header_row(grid: Grid, top: int, recognises: Recognises) -> int | None:
+def find_header(grid: Grid, top: int, recognises: Recognises) -> HeaderRow | None:
     """The first row of headers that are known; without one the row of words with the most known and the most cells."""
     best: tuple[tuple[int, int], int] | None = None
     for row in range(top, grid.last_row + 1):
@@ -166,10 +177,10 @@ def _header_row(grid: Grid, top: int, recognises: Recognises) -> int | None:
         if _are_headers(texts, recognises):
             if _is_above_headers(grid, row, recognises):
                 continue  # a pair of key and value, both of which happen to be known words
-            return row
+            return HeaderRow(row, True)
         if best is None or (known, len(texts)) > best[0]:
             best = (known, len(texts)), row
-    return None if best is None else best[1]
+    return None if best is None else HeaderRow(best[1], False)
 
 
 def _are_headers(texts: dict[int, str], recognises: Recognises) -> bool:

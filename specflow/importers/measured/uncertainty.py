@@ -21,7 +21,6 @@ from specflow.importers.measured.rejects import Rejects
 from specflow.importers.measured.result import Question
 from specflow.importers.measured.stated import Said
 from specflow.importers.measured.tables import FoundTable
-from specflow.importers.readers import column_letter
 from specflow.model.base import code_key
 from specflow.model.columns import Columns
 from specflow.model.declared import UncertaintyEntry
@@ -61,7 +60,6 @@ def from_column(
     own = rejects.apart()
     numbers = read_numbers(table, meaning.column, meaning.spelled, rows, own)
     rejects.cells += own.cells
-    letter = column_letter(meaning.column)
     if numbers.problem:
         return _asked(meaning, numbers.problem, "give the whole column one number format")
     spread = numbers.low / (meaning.k or 1.0)
@@ -77,7 +75,7 @@ def from_column(
         u, note = in_tolerance_unit(spread, parse_unit(meaning.unit), parse_unit(value.unit), low)
     except UnitError as error:
         return _asked(meaning, error.message, error.hint or "settle unit and role of the column in a mapping")
-    source = f"column {letter}, " + ("standard" if meaning.k == 1 else f"U with k = {meaning.k:g}")
+    source = f"{meaning.header.line}, " + ("standard" if meaning.k == 1 else f"U with k = {meaning.k:g}")
     return Spread(u, source, meaning.k, notes=[note] if note else [])
 
 
@@ -201,6 +199,6 @@ def _level(entry: UncertaintyEntry, value: ColumnMeaning, low: Floats) -> Floats
 
 def _asked(meaning: ColumnMeaning, what: str, remedy: str) -> Spread:
     question = Question(
-        meaning.header.text, meaning.header.cell, f"column {column_letter(meaning.column)}: {what}", remedy
+        meaning.header.text, meaning.header.cell, f"{meaning.header.line}: {what}", remedy
     )
     return Spread(question=question)

@@ -13,7 +13,7 @@ from specflow.importers.measured.cell_units import brought, one_unit, slip_of, u
 from specflow.importers.measured.header_cells import HeaderCell
 from specflow.importers.measured.header_text import HeaderText, known_unit
 from specflow.importers.measured.tables import FoundTable
-from specflow.importers.readers import OddKind, OddRun, address
+from specflow.importers.readers import OddKind, OddRun
 from specflow.units import format_unit, parse_reading_with_unit, parse_unit
 
 _MOST_TEXTS = 2000
@@ -45,7 +45,8 @@ def find_unit(table: FoundTable, header: HeaderCell, parts: HeaderText, mapped: 
 def _found(table: FoundTable, header: HeaderCell, parts: HeaderText) -> FoundUnit:
     written = [(parts.unit, f"the header {header.cell}")] if parts.unit else []
     if header.unit and header.unit_row is not None:
-        written.append((header.unit, f"the units row, {address(header.unit_row, header.column)}"))
+        where = f"the units row, {table.grid.address(header.unit_row, header.column)}"
+        written.append((header.unit, header.unit_from or where))
     if len(written) == 2 and known_unit(written[0][0]) != known_unit(written[1][0]):
         return FoundUnit(problem=f"the header says {written[0][0]}, the units row {written[1][0]}")
     if written:
@@ -91,7 +92,7 @@ def _from_format(table: FoundTable, header: HeaderCell) -> FoundUnit | None:
         return FoundUnit(problem=f"only some cells have the number format with {unit}")
     if known_unit(unit) is None:
         return FoundUnit(problem=f"the number format writes {unit!r}, which is no unit")
-    return FoundUnit(unit, f"the number format of {address(int(table.rows[0]), header.column)}")
+    return FoundUnit(unit, f"the number format of {table.grid.address(int(table.rows[0]), header.column)}")
 
 
 def _from_texts(table: FoundTable, header: HeaderCell) -> FoundUnit | None:

@@ -56,7 +56,7 @@ def column_numbers(work: TableWork, meaning: ColumnMeaning) -> Numbers:
         work.questions.append(meaning.asks(numbers.problem, ONE_FORMAT))
     _reject_merged(work, meaning.column, numbers)
     _doubt_sign(work, meaning, numbers)
-    work.notes += [f"column {meaning.letter}: {note}" for note in numbers.notes]
+    work.notes += [f"{meaning.header.line}: {note}" for note in numbers.notes]
     return numbers
 
 
@@ -106,7 +106,7 @@ def _doubt_sign(work: TableWork, meaning: ColumnMeaning, numbers: Numbers) -> No
         and (known < 0).all()
     ):
         work.notes.append(
-            f"column {meaning.letter}: all values are negative, but a {meaning.parameter.title.lower()} is positive; "
+            f"{meaning.header.line}: all values are negative, but a {meaning.parameter.title.lower()} is positive; "
             "they were read as written"
         )
 

@@ -1,0 +1,25 @@
+"""Whether words name specimens: items that the project knows, or serial numbers as people write them."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Sequence
+
+from specflow.importers.measured.context import Context
+from specflow.model.base import code_key
+
+_SERIAL = re.compile(
+    r"^(?:s/?n|serial(?:\s+(?:no|number))?|dut|uut|eut|unit|sample|device|board|module|specimen|item|prüfling)"
+    r"[\s.:#_\-]*(?P<id>[A-Za-z]{0,4}[\-_]?\d[\w\-]*)$",
+    re.IGNORECASE,
+)
+
+
+def names_items(texts: Sequence[str], context: Context) -> bool:
+    """Whether all of these words name specimens, each another one."""
+    return bool(texts) and len(set(texts)) == len(texts) and all(is_item(text, context) for text in texts)
+
+
+def is_item(text: str, context: Context) -> bool:
+    """Whether a word names a specimen."""
+    return code_key(text) in context.snapshot.items_by_name or _SERIAL.match(text.strip()) is not None
