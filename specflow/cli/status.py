@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 from typing import Annotated
 
 import typer
@@ -31,6 +32,10 @@ def status(
     One row a requirement: k of n required points proved, the worst guarded margin and where it is, and its state.
     Totals of compliance and of close-out follow, with their denominators.
     """
+    # Status multiplies no matrices: the threads that OpenBLAS starts for that when numpy is imported would only spin,
+    # for a tenth of a second of a core that others may want.
+    os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
+
     from specflow.cli.tables import put_report, report_as_json
     from specflow.workflows.status import project_status
 
