@@ -15,9 +15,8 @@ from specflow.conditions.directions import angles_between, direction_vectors
 from specflow.conditions.words import value_words
 from specflow.derive.edges import edges_about_peak
 from specflow.derive.law import Law, Outcome, Setting, single
-from specflow.derive.samples import Samples
+from specflow.derive.samples import Samples, figure
 from specflow.errors import CalculationError
-from specflow.units import format_value
 
 Floats = NDArray[np.float64]
 
@@ -64,7 +63,7 @@ def main_lobe(values: Floats, depth: float) -> MainLobe:
     left, right = _null(values[: peak + 1][::-1], depth), _null(values[peak:], depth)
     if left is None and right is None:
         raise CalculationError(
-            f"no null at least {format_value(depth)} dB below the peak lies on either side of it",
+            f"no null at least {figure(depth)} dB below the peak lies on either side of it",
             hint="measure farther out, or state another null depth",
         )
     return MainLobe(
@@ -119,7 +118,8 @@ def off_axis(samples: Samples) -> Outcome:
     """Return every reading again, at its angle off the commanded direction: what an off-axis mask is stated over.
 
     Formula: great-circle angle between the direction of the reading and (``polar``, ``turn``); the value stays.
-    Valid: the commanded direction, not the peak found: a beam that points wrong is judged where it should point.
+    Valid: the commanded direction, not the peak found: a beam that points wrong is judged where it should point. With
+    ``as`` theta the angle takes the place of the direction, for a mask over θ from the beam.
     Source: off-axis angle of an earth station, ITU-R S.524 and national masks (from memory).
     """
     pair = next(one for one in DIRECTION_PAIRS if one.polar in samples.axes)
@@ -135,7 +135,9 @@ def off_axis(samples: Samples) -> Outcome:
         u=readings.u,
         u_rule="that of the reading",
     )
-    return replace(found, axes={**samples.axes, OFF_AXIS: np.round(angles, 9)})
+    name = samples.word("as")
+    kept = {} if name == pair.polar else samples.axes
+    return replace(found, axes={**kept, name: np.round(angles, 9)}, axis_units={name: "deg"})
 
 
 _ANGLE = "one value column over an angle (theta, azimuth ...); the other angle groups the rows"
@@ -170,6 +172,7 @@ CUT_LAWS: tuple[Law, ...] = (
         settings=(
             Setting("polar", "commanded polar angle (or elevation), as '30 deg'", unit="deg"),
             Setting("turn", "commanded azimuthal angle, as '0 deg'", unit="deg"),
+            Setting("as", "the condition that the angle is recorded as", OFF_AXIS, is_text=True),
         ),
         keeps_parameter=True,
         takes_bounds=True,

@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from specflow.conditions.words import range_words, value_words
 from specflow.derive.law import Law, Outcome, Setting, single
-from specflow.derive.samples import Samples
+from specflow.derive.samples import Samples, figure
 from specflow.errors import CalculationError
 from specflow.units import format_value
 
@@ -35,7 +35,7 @@ def edges_about_peak(along: Floats, values: Floats, level: float) -> Edges:
     peak = int(np.argmax(values))
     if values[peak] < level:
         raise CalculationError(
-            f"no reading reaches {format_value(level)}; the greatest is {format_value(values[peak])}"
+            f"no reading reaches {figure(level)}; the greatest is {format_value(values[peak])}"
         )
     above = values >= level
     left = np.flatnonzero(~above[:peak])
@@ -44,8 +44,8 @@ def edges_about_peak(along: Floats, values: Floats, level: float) -> Edges:
         side = "lower" if not len(left) else "upper"
         end = values[0] if side == "lower" else values[-1]
         raise CalculationError(
-            f"the {side} edge lies beyond the range: the trace ends at {format_value(end, decimals=4)}, "
-            f"the edge is at {format_value(level, decimals=4)}",
+            f"the {side} edge lies beyond the range: the trace ends at {figure(end)}, "
+            f"the edge is at {figure(level)}",
             hint="measure farther out; an edge is never extrapolated",
         )
     inner, outer = int(left[-1]), int(right[0])
@@ -140,9 +140,9 @@ def crossing(samples: Samples) -> Outcome:
     found = rising if direction == "rising" else falling if direction == "falling" else rising | falling
     places = np.flatnonzero(found)
     if not len(places):
-        there = f"{format_value(float(values.min()), decimals=4)} to {format_value(float(values.max()), decimals=4)}"
+        there = f"{figure(float(values.min()))} to {figure(float(values.max()))}"
         raise CalculationError(
-            f"the level {format_value(level)} is not met {'' if direction == 'either' else direction}".rstrip()
+            f"the level {figure(level)} is not met {'' if direction == 'either' else direction}".rstrip()
             + f" in {range_words(samples.axis, float(along[0]), float(along[-1]), samples.axis_unit)}; "
             f"the readings run from {there} {samples.values['value'].unit}",
             hint="a crossing is never extrapolated; measure farther, or ask for another level",

@@ -10,9 +10,9 @@ from numpy.typing import NDArray
 
 from specflow.calculators.dc_power import power_added_efficiency
 from specflow.derive.law import Law, Outcome, Setting, single
-from specflow.derive.samples import Samples
+from specflow.derive.samples import Samples, figure
 from specflow.errors import CalculationError
-from specflow.units import Kind, converter, format_value, parse_unit
+from specflow.units import Kind, converter, parse_unit
 
 Floats = NDArray[np.float64]
 Rows = NDArray[np.intp]
@@ -41,8 +41,8 @@ def _linear_gain(samples: Samples, role: str) -> tuple[Floats, Floats, float, Ro
     close = 1e-9 * max(1.0, abs(low), abs(high))
     if low > high or level[0] > low + close or level[-1] < high - close:
         raise CalculationError(
-            f"the sweep runs from {format_value(float(level[0]))} to {format_value(float(level[-1]))} dBm and does not "
-            f"cover the linear range {format_value(low)} to {format_value(high)} dBm",
+            f"the sweep runs from {figure(float(level[0]))} to {figure(float(level[-1]))} dBm and does not "
+            f"cover the linear range {figure(low)} to {figure(high)} dBm",
             hint="state a linear range inside the sweep",
         )
     rows = np.flatnonzero((level >= low - close) & (level <= high + close))
@@ -61,7 +61,7 @@ def small_signal_gain(samples: Samples) -> Outcome:
     """
     level, output, gain, rows = _linear_gain(samples, "output")
     varies = float(np.ptp((output - level)[rows]))
-    note = f"the gain varies by {format_value(varies, decimals=3)} dB over the {len(rows)} readings of the linear range"
+    note = f"the gain varies by {figure(varies)} dB over the {len(rows)} readings of the linear range"
     return single(gain, "dB", int(rows[-1]), notes=(note,))
 
 
@@ -80,8 +80,7 @@ def compression_point(samples: Samples) -> Outcome:
     if not len(reached):
         most = float(np.max(gain - (output - level)[last:]))
         raise CalculationError(
-            f"the gain falls by only {format_value(most, decimals=3)} dB up to "
-            f"{format_value(float(level[-1]))} dBm at the input",
+            f"the gain falls by only {figure(most)} dB up to {figure(float(level[-1]))} dBm at the input",
             hint="drive it harder; a compression point is never extrapolated",
         )
     row = int(reached[0])
@@ -90,9 +89,7 @@ def compression_point(samples: Samples) -> Outcome:
     at_output = float(output[row] + share * (output[row + 1] - output[row]))
     value, other = (at_input, at_output) if samples.word("referred") == "input" else (at_output, at_input)
     side = "output" if samples.word("referred") == "input" else "input"
-    at = (
-        f"small-signal gain {format_value(gain, decimals=3)} dB, {side} {format_value(other, decimals=3)} dBm"
-    )
+    at = f"small-signal gain {figure(gain)} dB, {side} {figure(other)} dBm"
     nearest = row if share < 0.5 else row + 1
     return single(value, "dBm", nearest, at=f"{at}, interpolated")
 
@@ -107,12 +104,12 @@ def saturated_power(samples: Samples) -> Outcome:
     level, output = _levels(samples, "output")
     span, rise = samples.number("span"), samples.number("rise")
     if level[-1] - level[0] < span:
-        raise CalculationError(f"the sweep is shorter than {format_value(span)} dB")
+        raise CalculationError(f"the sweep is shorter than {figure(span)} dB")
     before = float(np.interp(level[-1] - span, level, output))
     last = float(output.max() - before)
     if last > rise and int(np.argmax(output)) == len(output) - 1:
         raise CalculationError(
-            f"the output still rises by {format_value(last, decimals=3)} dB over the last {format_value(span)} dB",
+            f"the output still rises by {figure(last)} dB over the last {figure(span)} dB",
             hint="drive it harder, or state another rise",
         )
     row = int(np.argmax(output))
@@ -137,24 +134,24 @@ def efficiency_at_level(samples: Samples) -> Outcome:
     drive = wanted if samples.word("referred") == "input" else _drive_for(level, output, wanted)
     if not level[0] <= drive <= level[-1]:
         raise CalculationError(
-            f"the input level {format_value(drive)} dBm lies outside the sweep",
+            f"the input level {figure(drive)} dBm lies outside the sweep",
             hint="it is never extrapolated",
         )
     at_output = float(np.interp(drive, level, output))
     dc = float(np.interp(drive, level, supply))
     share = float(power_added_efficiency(at_output, drive, dc))
     row = int(np.argmin(np.abs(level - drive)))
-    at = f"input {format_value(drive, decimals=3)} dBm, output {format_value(at_output, decimals=3)} dBm"
-    return single(100 * share, "%", row, at=f"{at}, supply {format_value(dc, decimals=4)} W, interpolated")
+    at = f"input {figure(drive)} dBm, output {figure(at_output)} dBm"
+    return single(100 * share, "%", row, at=f"{at}, supply {figure(dc)} W, interpolated")
 
 
 def _drive_for(level: Floats, output: Floats, wanted: float) -> float:
     """Return the input level at which the output is first what is wanted."""
     reached = np.flatnonzero((output[:-1] <= wanted) & (output[1:] >= wanted))
     if not len(reached):
-        there = f"{format_value(float(output.min()), decimals=3)} to {format_value(float(output.max()), decimals=3)}"
+        there = f"{figure(float(output.min()))} to {figure(float(output.max()))}"
         raise CalculationError(
-            f"the output level {format_value(wanted)} dBm is not met; the output runs from {there} dBm",
+            f"the output level {figure(wanted)} dBm is not met; the output runs from {there} dBm",
             hint="it is never extrapolated",
         )
     row = int(reached[0])

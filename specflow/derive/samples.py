@@ -10,10 +10,15 @@ from numpy.typing import NDArray
 
 from specflow.errors import CalculationError
 from specflow.model.parameter import Parameter
-from specflow.units import Unit, parse_unit, tolerance_unit
+from specflow.units import Unit, format_value, parse_unit, tolerance_unit
 
 Floats = NDArray[np.float64]
 Rows = NDArray[np.intp]
+
+
+def figure(value: float) -> str:
+    """Say a number with at most six digits."""
+    return format_value(float(f"{value:.6g}"))
 
 
 @dataclass(frozen=True, slots=True)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field, replace
+from typing import Literal
 
 from specflow.changes import diff
 from specflow.derive import LAW_BY_NAME, LAWS, Derived, Law, Request, Role, complete_settings, derive_table
@@ -12,7 +13,7 @@ from specflow.exchange import digest
 from specflow.limits.tree import side_of
 from specflow.model.base import Document, code_key
 from specflow.model.derivation import Derivation, InputColumn, SettingSaid
-from specflow.model.evidence import EvidenceTable, Supersession, ValueColumn, Withdrawal
+from specflow.model.evidence import ConditionColumn, EvidenceTable, Supersession, ValueColumn, Withdrawal
 from specflow.model.limit import Side
 from specflow.model.parameter import Better, QuantityIdentity
 from specflow.model.requirement import Requirement
@@ -368,7 +369,6 @@ def _table(
     column = next(one for one in base.values if one.name == request.roles[0].column)
     how = derivation.words
     value = _value_column(column, derived, quantity, how)
-    kept = set(derived.columns.conditions.names)
     requirement = snapshot.find(Requirement, base.requirement)
     keeps = requirement is not None and code_key(requirement.quantity.parameter) == code_key(
         quantity.parameter
@@ -382,7 +382,7 @@ def _table(
             "title": how[:200],
             "rows": derived.columns.conditions.size,
             "values": (value,),
-            "conditions": tuple(one for one in base.conditions if one.dimension in kept),
+            "conditions": _conditions(base, derived),
             "requirement": base.requirement if keeps else None,
             "table_key": "D-" + digest([told, base.table_key])[:16],
             "mapping": None,
@@ -397,6 +397,19 @@ def _table(
     arrays = [[one.role, one.name, one.unit, one.labels, one.sha256] for one in pack(table, derived.columns)]
     content = [arrays, told, list(derivation.digests), derivation.law_version]
     return table.model_copy(update={"digest": digest(content)})
+
+
+def _conditions(base: EvidenceTable, derived: Derived) -> tuple[ConditionColumn, ...]:
+    """Return the condition columns of the result: those of the input that it keeps, and what the law added."""
+    known = {one.dimension: one for one in base.conditions}
+    columns = derived.columns.conditions
+    found = []
+    for name in columns.names:
+        kind: Literal["numeric", "text"] = "numeric" if name in columns.numeric else "text"
+        unit = columns.units.get(name, "")
+        added = ConditionColumn(dimension=name, kind=kind, unit=unit, stated_by="the law")
+        found.append(known[name].model_copy(update={"unit": unit}) if name in known else added)
+    return tuple(found)
 
 
 def _value_column(column: ValueColumn, derived: Derived, quantity: QuantityIdentity, how: str) -> ValueColumn:
