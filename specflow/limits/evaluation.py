@@ -17,7 +17,6 @@ from specflow.limits.expression_shape import plain_number
 from specflow.limits.expression_value import number_in, truth
 from specflow.limits.inputs import Flags, Inputs
 from specflow.limits.mask import mask_bounds
-from specflow.limits.settling import refuse_level_sums
 from specflow.limits.tree import tree_units
 from specflow.model.expression import Call, Choice, Expression, Name, Number, Operation
 from specflow.model.limit import (
@@ -110,6 +109,9 @@ def evaluate_node(node: LimitNode, inputs: Inputs) -> Bounds:
     match node:
         case Bound(side=side, value=value, unit=unit, strict=strict):
             if isinstance(value, Operation | Call | Choice):
+                # Most limits are plain numbers: what looks into formulas is loaded with the first one.
+                from specflow.limits.settling import refuse_level_sums
+
                 refuse_level_sums(value, unit, lambda leaf: _unit_found(leaf, inputs))
             number, flag = number_in(value, unit, inputs), ALL_FLAG if strict else NO_FLAG
             if side is Side.LOWER:
