@@ -23,7 +23,14 @@ if TYPE_CHECKING:
     from specflow.store import ProjectStore
     from specflow.workflows.attach import AttachOptions, AttachPreview, Decision
 
-Files = Annotated[list[Path], typer.Argument(help="Measurement files: .xlsx, .xlsm, .csv, .tsv, .txt, .dat.")]
+Files = Annotated[
+    list[Path],
+    typer.Argument(
+        help="Measurement files, filled-in test sheets, or folders of them.",
+        metavar="FILE_OR_FOLDER...",
+        show_default=False,
+    ),
+]
 State = Annotated[
     list[str],
     typer.Option(
@@ -59,11 +66,26 @@ Resolves = Annotated[
         "--resolves", help="With --supersedes: the discrepancy report of a fail and its disposition."
     ),
 ]
+Keep = Annotated[
+    bool,
+    typer.Option(
+        "--keep",
+        help="Keep a copy of the file in the project (up to 64 MiB); specflow export --file writes it out again.",
+    ),
+]
+Verify = Annotated[
+    bool,
+    typer.Option(
+        "--verify",
+        help="Attach nothing: read the original files again (in the files or folders named, else where they lay) and "
+        "say which are unchanged, changed, moved or gone. Ends with 1 when one changed or is gone.",
+    ),
+]
 Hidden = Annotated[bool, typer.Option("--include-hidden", help="Read hidden rows, too.")]
 
 
 def attach(
-    files: Files,
+    files: Files = [],  # noqa: B006
     project: ProjectOption = "",
     state: State = [],  # noqa: B006
     sheet: Sheets = [],  # noqa: B006
@@ -73,19 +95,43 @@ def attach(
     beside: Beside = False,
     resolves: Resolves = "",
     include_hidden: Hidden = False,
+    keep: Keep = False,
+    verify: Verify = False,
     take_rest: TakeRestOption = False,
     yes: YesOption = False,
     dry_run: DryRunOption = False,
     as_json: JsonOption = False,
     by: ByOption = "",
 ) -> int:
-    """Attach measurement files: show how every column is understood, what is rejected, then store it."""
+    """Attach measurement files: show how every column is understood, what is rejected, then store it.
+
+    A folder is looked through with all folders below; each file is stored in a transaction of its own, and a summary
+    says which were accepted, unchanged or rejected. Mapping files (.toml) of the folder settle the layouts they name.
+    """
     from specflow.workflows.attach import AttachOptions, Decision
 
-    options = AttachOptions(_statements(state), mapping, sheet, include_hidden, supersedes)
-    decision = Decision(person(by), take_rest, supersedes, beside, resolves)
-    if propose_mapping is not None and len(files) > 1:
+    if verify:
+        from specflow.cli.attach_verify import verify_attached
+
+        return verify_attached(files, project, as_json=as_json)
+    if not files:
+        raise SpecflowError(
+            "no file is named", hint="specflow attach FILE, or a folder: specflow attach results/"
+        )
+    options = AttachOptions(
+        stated=_statements(state),
+        mapping=mapping,
+        sheets=sheet,
+        include_hidden_rows=include_hidden,
+        supersedes=supersedes,
+    )
+    decision = Decision(person(by), take_rest, supersedes, beside, resolves, keep=keep)
+    if propose_mapping is not None and (len(files) > 1 or files[0].is_dir()):
         raise SpecflowError("a mapping is proposed for one file at a time", hint="name one file")
+    if any(path.is_dir() for path in files):
+        from specflow.cli.attach_folder import attach_folders
+
+        return attach_folders(files, project, options, decision, yes=yes, dry_run=dry_run, as_json=as_json)
     with open_store(project, read_only=dry_run or propose_mapping is not None) as store:
         if propose_mapping is not None:
             return _propose(store, files[0], options, propose_mapping)
@@ -184,15 +230,23 @@ class _Run:
         from specflow.workflows.attach import accept_attach, check_acceptable
 
         check_acceptable(preview, self._decision)
-        if self._dry_run or preview.is_unchanged:
+        if self._dry_run or (preview.is_unchanged and not self._keeps(preview)):
             return ExitCode.CLEAN
         if not self._yes and not ask("store this?"):
             say("nothing was stored")
             return ExitCode.CLEAN
         stored = accept_attach(self._store, preview, self._decision)
+        if stored.kept:
+            say(f"a copy of {preview.path.name} is kept in the project as {stored.file}")
+        if not stored.tables and stored.kept:
+            return ExitCode.CLEAN
         if self._as_json:
             self._data[-1] |= {"stored": list(stored.tables), "revision": stored.revision}
         say(
             f"stored as {', '.join(stored.tables) or 'a mapping'}; the project is at revision {stored.revision}"
         )
         return ExitCode.CLEAN
+
+    def _keeps(self, preview: AttachPreview) -> bool:
+        """Whether accepting a file that has nothing new may still keep a copy of it."""
+        return self._decision.keep or preview.snapshot.project.policy.keep_copies

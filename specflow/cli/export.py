@@ -9,6 +9,7 @@ import typer
 
 from specflow.cli.console import progress, put, put_bytes, put_json, say
 from specflow.cli.options import AsOfOption, JsonOption, ProjectOption, judged_on, open_store
+from specflow.errors import SpecflowError
 
 OutputOption = Annotated[
     str,
@@ -37,6 +38,15 @@ TableOption = Annotated[
         show_default=False,
     ),
 ]
+FileOption = Annotated[
+    str,
+    typer.Option(
+        "--file",
+        metavar="F-N",
+        help="Instead of a report: write out the copy that is kept of this evidence file (see attach --keep).",
+        show_default=False,
+    ),
+]
 OverwriteOption = Annotated[bool, typer.Option("--overwrite", help="Replace the file if it exists.")]
 
 
@@ -44,6 +54,7 @@ def export(
     output: OutputOption = "",
     format: FormatOption = "",
     table: TableOption = None,
+    file: FileOption = "",
     overwrite: OverwriteOption = False,
     project: ProjectOption = "",
     as_of: AsOfOption = "",
@@ -57,6 +68,14 @@ def export(
     """
     from specflow.workflows.export import export_report, format_for, write_export
 
+    if file:
+        if format or table:
+            raise SpecflowError(
+                "--file writes a file as it was received, not a report",
+                hint="leave --format and --table out",
+            )
+        _write_copy(file, output, project, overwrite=overwrite, as_json=as_json)
+        return
     with open_store(project, read_only=True) as store, progress("export"):
         made = export_report(store, judged_on(as_of), format_for(output, format), tables=table or ())
     if output == "-":
@@ -69,3 +88,21 @@ def export(
         return
     put(str(path))
     say("; ".join(f"{title}: {rows} rows" for title, rows in made.tables))
+
+
+def _write_copy(name: str, output: str, project: str, *, overwrite: bool, as_json: bool) -> None:
+    from specflow.workflows.kept_copy import kept_copy, write_kept
+
+    with open_store(project, read_only=True) as store:
+        copy = kept_copy(store, name)
+    if output == "-":
+        put_bytes(copy.content)
+        return
+    path = write_kept(copy, Path(output) if output else None, overwrite=overwrite)
+    if as_json:
+        put_json(
+            {"file": str(path), "id": copy.file.id, "bytes": len(copy.content), "sha256": copy.file.sha256}
+        )
+        return
+    put(str(path))
+    say(f"{copy.file.name} as it was received, {len(copy.content)} bytes, SHA-256 {copy.file.sha256}")

@@ -20,12 +20,15 @@ from specflow.workflows.numbering import next_number
 class AttachOptions:
     """What the person says about the files, beside the files themselves.
 
-    ``stated`` holds for all tables; ``mapping`` is a mapping file; ``sheets`` limits what is read. ``supersedes`` are
-    earlier tables that are compared whatever their layout.
+    ``stated`` holds for all tables; ``mapping`` is a mapping file, ``mapping_text`` and ``mapping_name`` stand for
+    several in one; ``sheets`` limits what is read. ``supersedes`` are earlier tables
+    that are compared whatever their layout.
     """
 
     stated: Mapping[str, str] = field(default_factory=dict)
     mapping: Path | None = None
+    mapping_text: str = ""
+    mapping_name: str = ""
     sheets: Sequence[str] = ()
     include_hidden_rows: bool = False
     supersedes: Sequence[str] = ()
@@ -106,8 +109,8 @@ def preview_attach(
         path,
         snapshot,
         project_dictionary(snapshot),
-        mapping=read_mapping_file(options.mapping),
-        mapping_name=options.mapping.name if options.mapping else "",
+        mapping=options.mapping_text or read_mapping_file(options.mapping),
+        mapping_name=options.mapping_name or (options.mapping.name if options.mapping else ""),
         stated=options.stated,
         sheets=options.sheets,
         include_hidden_rows=options.include_hidden_rows,

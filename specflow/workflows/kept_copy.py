@@ -20,11 +20,11 @@ MOST_KEPT_BYTES = 64 * 1024 * 1024
 
 
 @dataclass(frozen=True, slots=True)
-class WrittenCopy:
-    """A kept copy that was written out."""
+class KeptCopy:
+    """An evidence file with the bytes that were kept of it."""
 
     file: EvidenceFile
-    path: Path
+    content: bytes
 
 
 def path_from_project(store: ProjectStore, path: Path) -> str:
@@ -67,25 +67,29 @@ def keeps_copy(preview: AttachPreview, *, asked: bool) -> bool:
     return False
 
 
-def write_kept(
-    store: ProjectStore, name: str, target: Path | None, *, overwrite: bool = False
-) -> WrittenCopy:
-    """Write the kept copy of an evidence file (by id or name) to ``target``, else under its own name in this folder.
+def kept_copy(store: ProjectStore, name: str) -> KeptCopy:
+    """Return the kept copy of an evidence file, named by its id or its name.
 
-    DocumentError when there is no such file or no copy of it, or the copy is damaged; FileError when the target exists
-    or cannot be written. A file that cannot be written whole is not left behind.
+    DocumentError when there is no such file or no copy of it, or the copy is damaged.
     """
     file = _file_named(store, name)
-    content = kept_content(store, file)
-    path = Path(file.name) if target is None else target
-    path = path / file.name if path.is_dir() else path
+    return KeptCopy(file, kept_content(store, file))
+
+
+def write_kept(copy: KeptCopy, target: Path | None, *, overwrite: bool = False) -> Path:
+    """Write a kept copy to ``target`` (a file or a folder), else under its own name in this folder; return the path.
+
+    FileError when the target exists or cannot be written; nothing is left half-written.
+    """
+    path = Path(Path(copy.file.name).name) if target is None else target
+    path = path / Path(copy.file.name).name if path.is_dir() else path
     if path.exists() and not overwrite:
         raise FileError(
             "the file exists already", where=str(path), hint="name another one with -o, or say --overwrite"
         )
     part = path.with_name(f"{path.name}.part")
     try:
-        part.write_bytes(content)
+        part.write_bytes(copy.content)
         part.replace(path)
     except OSError as error:
         part.unlink(missing_ok=True)
@@ -93,7 +97,7 @@ def write_kept(
         raise FileError(
             f"the file cannot be written: {reason}", where=str(path), hint="check folder and space"
         ) from error
-    return WrittenCopy(file, path)
+    return path
 
 
 def kept_content(store: ProjectStore, file: EvidenceFile) -> bytes:
