@@ -14,6 +14,7 @@ from specflow.model.evidence import (
     TableMapping,
 )
 from specflow.model.snapshot import Snapshot
+from specflow.workflows.attach_derived import Acceptance, derived_documents
 from specflow.workflows.attach_preview import AttachPreview, Decision
 from specflow.workflows.earlier_tables import Replacement
 from specflow.workflows.numbering import next_number
@@ -34,6 +35,11 @@ def documents_of(
         documents.append(file)
     number = next_number(snapshot, EvidenceTable, "EV-")
     steps: list[Supersession] = []
+    roots = {
+        place: stored
+        for place, code in preview.known.items()
+        if (stored := snapshot.find(EvidenceTable, code)) is not None
+    }
     for place, table in preview.new_tables:
         assert table.document is not None and table.columns is not None
         mapping, revision = _mapping_of(preview, table)
@@ -49,13 +55,26 @@ def documents_of(
             }
         )
         documents.append(document)
+        roots[place] = document
         columns[document.id] = table.columns
         number += 1
         steps += [
             _supersession(snapshot, one, document.id, decision, now, len(steps))
             for one in replacements.get(place, ())
         ]
-    return [*documents, *steps], columns
+    replaced = {
+        place: [one.earlier for one in found if len(one.rows) == one.earlier_rows]
+        for place, found in replacements.items()
+    }
+    derived, arrays = derived_documents(
+        snapshot,
+        preview.planned,
+        roots,
+        replaced,
+        {"EV-": len(preview.new_tables), "SUP-": len(steps)},
+        Acceptance(decision.by, now, decision.reason, decision.resolves),
+    )
+    return [*documents, *steps, *derived], {**columns, **arrays}
 
 
 def file_of(preview: AttachPreview, now: str, *, path: str, kept: bool) -> EvidenceFile:

@@ -10,6 +10,7 @@ from specflow.importers.measurements import MeasuredTable, Measurements, read_me
 from specflow.model.evidence import TableMapping
 from specflow.model.snapshot import Snapshot
 from specflow.store import ProjectStore
+from specflow.workflows.attach_derived import Planned, planned_tables
 from specflow.workflows.earlier_tables import Replacement, replaced_rows
 from specflow.workflows.evaluate_project import project_dictionary
 from specflow.workflows.mapping_file import read_mapping_file
@@ -40,6 +41,7 @@ class AttachPreview:
 
     ``known`` says, by position of the table, under which id its values are stored already. ``replacements`` are rows
     of earlier tables with the same identity, by position of the table. ``mapping_changes`` are mappings that are kept.
+    ``planned`` is what is derived from the tables, by their position.
     """
 
     path: Path
@@ -48,6 +50,12 @@ class AttachPreview:
     known: Mapping[int, str]
     replacements: Mapping[int, Sequence[Replacement]]
     mapping_documents: Sequence[TableMapping]
+    planned: Planned = field(default_factory=dict)
+
+    @property
+    def new_derived(self) -> int:
+        """How many derived tables would be added."""
+        return sum(one.is_new for tables in self.planned.values() for one in tables)
 
     @property
     def new_tables(self) -> Sequence[tuple[int, MeasuredTable]]:
@@ -80,7 +88,8 @@ class AttachPreview:
     @property
     def is_unchanged(self) -> bool:
         """Whether the file has nothing that is not stored already."""
-        return bool(self.known) and not self.new_tables and not self.unresolved and not self.mapping_documents
+        new = self.new_tables or self.unresolved or self.mapping_documents or self.new_derived
+        return bool(self.known) and not new
 
 
 @dataclass(frozen=True)
@@ -105,10 +114,11 @@ def preview_attach(
 ) -> AttachPreview:
     """Read a measurement file and compare it with what is stored; nothing is stored."""
     snapshot = store.load()
+    dictionary = project_dictionary(snapshot)
     measurements = read_measurements(
         path,
         snapshot,
-        project_dictionary(snapshot),
+        dictionary,
         mapping=options.mapping_text or read_mapping_file(options.mapping),
         mapping_name=options.mapping_name or (options.mapping.name if options.mapping else ""),
         stated=options.stated,
@@ -127,7 +137,13 @@ def preview_attach(
         )
     }
     return AttachPreview(
-        path, measurements, snapshot, known, replacements, _mapping_documents(snapshot, measurements, path)
+        path,
+        measurements,
+        snapshot,
+        known,
+        replacements,
+        _mapping_documents(snapshot, measurements, path),
+        planned_tables(snapshot, dictionary, measurements, known),
     )
 
 

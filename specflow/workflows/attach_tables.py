@@ -8,6 +8,7 @@ from typing import Any
 from specflow.importers.measurements import MeasuredTable, Role
 from specflow.model.report import CellTone, ReportCell, ReportColumn, ReportRow, ReportTable
 from specflow.workflows.attach import AttachPreview
+from specflow.workflows.attach_derived import PlannedTable, planned_result
 
 _QUIET = (Role.INDEX, Role.REMARK, Role.NOT_READ, Role.STATED_LIMIT, Role.STATED_VERDICT)
 
@@ -21,6 +22,8 @@ def preview_tables(preview: AttachPreview) -> list[ReportTable]:
             tables.append(_questions(table))
         if table.rejected:
             tables.append(_rejected(table))
+        if preview.planned.get(place):
+            tables.append(_planned(preview.planned[place]))
     return tables
 
 
@@ -46,6 +49,8 @@ def preview_sentence(preview: AttachPreview) -> str:
     if preview.is_unchanged:
         return f"{preview.path.name}: unchanged, nothing to add"
     parts = [f"{len(new)} new table{'s' * (len(new) != 1)}", f"{preview.values} values"]
+    made = preview.new_derived
+    parts += [f"{made} derived table{'s' * (made != 1)}"] if made else []
     questions = sum(len(table.questions) for table in preview.unresolved)
     parts += [f"{questions} open question{'s' * (questions != 1)}"] if questions else []
     parts += [f"{preview.rejected_cells} rejected"] if preview.rejected_cells else []
@@ -94,6 +99,11 @@ def _table_json(preview: AttachPreview, place: int, table: MeasuredTable) -> dic
         ],
         "rejected": [one.model_dump() for one in table.rejected],
         "notes": list(table.notes),
+        "derived": [
+            {"quantity": one.plan.quantity.model_dump(), "law": one.plan.law, "of": one.plan.shown, "for": one.plan.why,
+             "result": planned_result(one)}
+            for one in preview.planned.get(place, ())
+        ],
         "replaces": [
             {"table": one.earlier, "rows": len(one.rows), "differing": one.differing}
             for one in preview.replacements.get(place, ())
@@ -148,6 +158,20 @@ def _rejected(table: MeasuredTable) -> ReportTable:
         ("Cell", "Text", "Reason"),
         rows,
     )
+
+
+def _planned(planned: Sequence[PlannedTable]) -> ReportTable:
+    rows = [
+        _row(
+            one.plan.quantity.parameter,
+            (one.plan.quantity.parameter.replace("_", " "), one.plan.quantity.plane, one.plan.law, one.plan.shown,
+             one.plan.why, planned_result(one)),
+            CellTone.BAD if one.failure else CellTone.PLAIN,
+        )
+        for one in planned
+    ]  # fmt: skip
+    intro = "The raw data are stored as recorded; these are made of them, each a table that names its law."
+    return _table("derived", "Derived", intro, ("Quantity", "Plane", "Law", "Of", "For", "Result"), rows)
 
 
 def _table(key: str, title: str, intro: str, titles: Sequence[str], rows: Iterable[ReportRow]) -> ReportTable:

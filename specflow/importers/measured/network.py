@@ -17,7 +17,7 @@ from specflow.importers.measured.mapping import LayoutMapping, write_mapping
 from specflow.importers.measured.network_columns import NetworkTable, noise_table, scattering_table
 from specflow.importers.measured.network_doubts import NETWORK_KEYS, Axis, SettledNetwork, settle
 from specflow.importers.measured.network_facts import CommentFacts, comment_facts
-from specflow.importers.measured.network_plans import Plan, Plans, plans_for
+from specflow.importers.measured.network_plans import WHOLE, Plan, Plans, plans_for
 from specflow.importers.measured.network_ports import KEY, named_ports, unknown_ports
 from specflow.importers.measured.rejects import Rejects
 from specflow.importers.measured.result import ColumnReading, MeasuredTable, Role
@@ -208,8 +208,7 @@ class _Reading:
         """What is derived from this table, with the columns that it reads; what names no port is asked."""
         if block is None:
             return []
-        derive = self.said.get("derive", "")
-        found: Plans = plans_for(block, self.ports, self.context, derive, self.network.noise is not None)
+        found: Plans = plans_for(block, self.ports, self.context, self.said, self.network.noise is not None)
         if not columns.is_noise:
             work.notes += [f"not derived: {one}" for one in found.left]
             for why in found.asked:
@@ -225,12 +224,16 @@ class _Reading:
 
     def _with_columns(self, plan: Plan, columns: NetworkTable, work: TableWork) -> DerivationPlan | None:
         values = columns.roles(plan.entries)
-        over = plan.over or self._whole(columns, [name for _, name in values])
-        if not over:
+        over = self._whole(columns, [name for _, name in values]) if plan.over == WHOLE else plan.over
+        if plan.over and not over:
             work.notes.append(f"not derived: {plan.why}: {plan.quantity.parameter}: there is one row only")
             return None
-        entries = ", ".join(columns.entry_names(plan.entries)) or "the noise block"
-        return DerivationPlan(plan.law, values, plan.quantity, over, plan.why, entries)
+        names = columns.entry_names(plan.entries)
+        entries = ", ".join(names if len(names) < 4 else [names[0], "...", names[-1]]) or "the noise block"
+        settings = dict(plan.settings)
+        if plan.noise:
+            settings["reference"] = _figure(self.network.reference_ohm[0])
+        return DerivationPlan(plan.law, values, plan.quantity, over, plan.why, entries, settings)
 
     def _whole(self, columns: NetworkTable, names: Sequence[str]) -> str:
         """The whole range of the rows that have all values, as a law takes it; with the largest gap where some lack."""

@@ -15,7 +15,7 @@ from specflow.importers.readers.touchstone_network import Doubt, DoubtKind, Netw
 from specflow.units import compatible, format_unit, parse_unit
 
 #: What may be said of a network, beside what may be said of any table and "port N".
-NETWORK_KEYS = ("x axis", "column order", "format", "derive")
+NETWORK_KEYS = ("x axis", "column order", "format", "derive", "spacing")
 
 _REMEDIES = {
     DoubtKind.X_AXIS: '--state "x axis=frequency" if it is one, else its condition: "x axis=input_level in dBm"',

@@ -6,8 +6,8 @@ A plan names a law and the columns it reads; the laws themselves are not known h
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Sequence
-from dataclasses import dataclass, field
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass, field, replace
 
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.network_ports import Ports
@@ -19,6 +19,9 @@ from specflow.model.requirement import Requirement
 
 Entry = tuple[int, int]
 
+#: The range of a plan over all frequencies of the file.
+WHOLE = "whole"
+
 #: Statistics of a requirement that are judged on the values over frequency themselves.
 _OF_A_TRACE = frozenset({""})
 
@@ -27,7 +30,8 @@ _OF_A_TRACE = frozenset({""})
 class Plan:
     """A law to be applied to entries of a network: ``entries`` (to port, from port) from 0, in the order of its roles.
 
-    ``noise``: it reads the noise block instead. ``over`` is a range of the axis as said, "" for the whole file.
+    ``noise``: it reads the noise block instead. ``over`` is a range of the axis as said, ``WHOLE`` that of the file, ""
+    where the law goes row by row.
     """
 
     law: str
@@ -36,6 +40,7 @@ class Plan:
     why: str
     over: str = ""
     noise: bool = False
+    settings: Mapping[str, str] = field(default_factory=dict)
 
 
 @dataclass
@@ -47,6 +52,17 @@ class Plans:
     asked: list[str] = field(default_factory=list)
 
 
+@dataclass(frozen=True, slots=True)
+class _Wish:
+    """A quantity that is wanted, by whom, and what the requirement and the person say about it."""
+
+    quantity: QuantityIdentity
+    why: str
+    band: str = ""
+    scan: str = ""
+    spacing: str = ""
+
+
 class _NotPlanned(Exception):
     """Why a quantity cannot be planned; ``asks`` where naming the ports would settle it."""
 
@@ -55,17 +71,29 @@ class _NotPlanned(Exception):
         self.asks = asks
 
 
-def plans_for(block: Block, ports: Ports, context: Context, said: str, has_noise: bool) -> Plans:
-    """Plan what requirements on the block speak of, and what is said to be derived ("gain; return loss at input")."""
-    found = Plans()
+def plans_for(
+    block: Block, ports: Ports, context: Context, said_of_network: Mapping[str, str], has_noise: bool
+) -> Plans:
+    """Plan what requirements on the block speak of, or what is said to be derived ("gain; return loss at input").
+
+    ``said_of_network``: "derive", and "spacing" of the elements of an array.
+    """
+    found, said = Plans(), said_of_network.get("derive", "")
     if code_key(said) == "none":
         found.left.append("nothing is derived, as stated")
         return found
-    wishes = [(one.quantity, one.id, _band(one, context)) for one in context.snapshot.requirements
-              if code_key(one.block) == code_key(block.id)]  # fmt: skip
+    spacing = said_of_network.get("spacing", "")
+    wishes = [
+        _Wish(
+            one.quantity, one.id, _span(one, context, "frequency"), _span(one, context, "scan_theta"), spacing
+        )
+        for one in context.snapshot.requirements
+        if code_key(one.block) == code_key(block.id)
+    ]
     if said:
-        wishes = [(quantity, "as stated", "") for quantity in _said(said, context, found)]
-    for quantity, why, band in wishes:
+        wishes = [_Wish(quantity, "as stated", spacing=spacing) for quantity in _said(said, context, found)]
+    for wish in wishes:
+        quantity, why = wish.quantity, wish.why
         make = _LAWS.get(quantity.parameter)
         if make is None:
             if said:
@@ -77,7 +105,7 @@ def plans_for(block: Block, ports: Ports, context: Context, said: str, has_noise
             )
             continue
         try:
-            plan = make(quantity, ports, why, band, has_noise)
+            plan = make(wish, ports, has_noise)
         except _NotPlanned as error:
             (found.asked if error.asks else found.left).append(f"{why}: {quantity.parameter}: {error}")
             continue
@@ -93,16 +121,9 @@ def plans_for(block: Block, ports: Ports, context: Context, said: str, has_noise
 def _add(found: Plans, plan: Plan) -> None:
     """Add a plan, or its reason to the one that gives the same quantity."""
     for place, known in enumerate(found.plans):
-        if (known.quantity, known.over) == (plan.quantity, plan.over):
+        if replace(plan, why=known.why) == known:
             if plan.why not in known.why.split(", "):
-                found.plans[place] = Plan(
-                    known.law,
-                    known.quantity,
-                    known.entries,
-                    f"{known.why}, {plan.why}",
-                    known.over,
-                    known.noise,
-                )
+                found.plans[place] = replace(known, why=f"{known.why}, {plan.why}")
             return
     found.plans.append(plan)
 
@@ -126,12 +147,18 @@ def _said(text: str, context: Context, found: Plans) -> list[QuantityIdentity]:
     return quantities
 
 
-def _band(requirement: Requirement, context: Context) -> str:
-    """The range of frequency that a requirement speaks of, as a law takes it, "" where it has none."""
+def _span(requirement: Requirement, context: Context, name: str) -> str:
+    """The range of a dimension that a requirement speaks of, as a law takes it, "" where it has none."""
     conditions = context.snapshot.find(ConditionsSet, requirement.conditions)
     for dimension in conditions.dimensions if conditions else ():
-        if dimension.name == "frequency" and dimension.span is not None:
-            return f"frequency: {dimension.span.low!r}..{dimension.span.high!r} {dimension.unit}"
+        if dimension.name == name and dimension.span is not None:
+            span = dimension.span
+            step = (
+                f" step {span.step!r} {dimension.unit}"
+                if span.step is not None and name != "frequency"
+                else ""
+            )
+            return f"{name}: {span.low!r}..{span.high!r} {dimension.unit}{step}"
     return ""
 
 
@@ -191,36 +218,47 @@ def _two_paths(quantity: QuantityIdentity, ports: Ports) -> tuple[Entry, Entry]:
     return (ends[0], start), (ends[1], start)
 
 
-Make = Callable[[QuantityIdentity, Ports, str, str, bool], Plan]
+Make = Callable[[_Wish, Ports, bool], Plan]
 
 
-def _of(law: str, where: Callable[[QuantityIdentity, Ports], Entry], banded: bool = False) -> Make:
-    """A plan of one entry; ``banded`` laws run over the band of the requirement, not over the whole file."""
+def _of(law: str, where: Callable[[QuantityIdentity, Ports], Entry], over: str = "") -> Make:
+    """A plan of one entry, row by row or over the whole file."""
 
-    def make(quantity: QuantityIdentity, ports: Ports, why: str, band: str, _: bool) -> Plan:
-        if banded and not band:
-            raise _NotPlanned(
-                "its conditions name no range of frequency to fit over (specflow derive takes one)"
-            )
-        return Plan(law, quantity, (where(quantity, ports),), why, band if banded else "")
+    def make(wish: _Wish, ports: Ports, _: bool) -> Plan:
+        return Plan(law, wish.quantity, (where(wish.quantity, ports),), wish.why, over)
 
     return make
+
+
+def _linearity(wish: _Wish, ports: Ports, _: bool) -> Plan:
+    """A line is fitted over the band of the requirement, never over another."""
+    if not wish.band:
+        raise _NotPlanned("its conditions name no range of frequency to fit over (specflow derive takes one)")
+    return Plan("phase linearity", wish.quantity, (_forward(wish.quantity, ports),), wish.why, wish.band)
 
 
 def _of_paths(law: str) -> Make:
-    def make(quantity: QuantityIdentity, ports: Ports, why: str, _band: str, _noise: bool) -> Plan:
-        return Plan(law, quantity, _two_paths(quantity, ports), why)
+    def make(wish: _Wish, ports: Ports, _: bool) -> Plan:
+        return Plan(law, wish.quantity, _two_paths(wish.quantity, ports), wish.why)
 
     return make
 
 
-def _of_noise(law: str) -> Make:
-    def make(quantity: QuantityIdentity, _ports: Ports, why: str, _band: str, has_noise: bool) -> Plan:
-        if not has_noise:
-            raise _NotPlanned("the file has no noise block")
-        return Plan(law, quantity, (), why, noise=True)
+def _noise_figure(wish: _Wish, _: Ports, has_noise: bool) -> Plan:
+    if not has_noise:
+        raise _NotPlanned("the file has no noise block")
+    return Plan("noise figure", wish.quantity, (), wish.why, noise=True)
 
-    return make
+
+def _active(wish: _Wish, ports: Ports, _: bool) -> Plan:
+    """All entries, the ports as elements of a line in their order; spacing and scan must be said."""
+    if not wish.spacing:
+        raise _NotPlanned('the spacing of the elements is not said (--state "spacing=5 mm")')
+    if not wish.scan:
+        raise _NotPlanned("its conditions name no range of scan_theta with a step")
+    entries = tuple((i, j) for i in range(len(ports.names)) for j in range(len(ports.names)))
+    settings = {"spacing": wish.spacing, "scan": wish.scan.partition(": ")[2]}
+    return Plan("active reflection", wish.quantity, entries, wish.why, WHOLE, settings=settings)
 
 
 _LAWS: dict[str, Make] = {
@@ -236,12 +274,12 @@ _LAWS: dict[str, Make] = {
     "coupling": _of("loss", _between),
     "vswr": _of("vswr", _reflection),
     "phase": _of("phase", _forward),
-    "group_delay": _of("group delay", _forward),
-    "phase_linearity": _of("phase linearity", _forward, banded=True),
+    "group_delay": _of("group delay", _forward, WHOLE),
+    "phase_linearity": _linearity,
     "amplitude_imbalance": _of_paths("amplitude imbalance"),
     "phase_imbalance": _of_paths("phase imbalance"),
-    "noise_figure": _of_noise("noise figure"),
-    "noise_figure_minimum": _of_noise("noise figure minimum"),
+    "noise_figure": _noise_figure,
+    "active_reflection": _active,
 }
 
 DERIVABLE: Sequence[str] = tuple(_LAWS)
