@@ -1,19 +1,20 @@
 """Bytes to grids: one module a file format, no meaning given to any cell.
 
-What may live here: the readers (``xlsx``, ``csv``), what they give (``grid``), the bytes they take (``source``), and
-the parts of one reader that have a name of their own (the zip archive, the scan of sheet XML, the delimiter). A reader
-takes a Source and returns grids, raises FileError for a file that cannot be read, and never reports on a cell: odd
+What may live here: the readers (``xlsx``, ``xls``, ``ods``, ``csv``, ``json_lines``, ``html``), what they give
+(``grid``, ``stores``), the bytes they take (``source``, ``contents``), and the parts of one reader that have a name of
+their own (the zip archive, the scan of sheet XML, the delimiter). A reader takes a Source and returns grids, raises FileError for a file that cannot be read, and never reports on a cell: odd
 cells are data in the grid. A new format is one module and one line in ``READERS``.
 """
 
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import overload
 
 from specflow.errors import FileError
+from specflow.importers.readers.contents import Content, content_of
 from specflow.importers.readers.csv import read_csv
 from specflow.importers.readers.grid import (
     CellRange,
@@ -29,9 +30,13 @@ from specflow.importers.readers.grid import (
     looks_numeric,
     sheet,
 )
+from specflow.importers.readers.html import read_html
 from specflow.importers.readers.inspection import comments, formulas
+from specflow.importers.readers.json_lines import read_json_lines
+from specflow.importers.readers.ods import read_ods
 from specflow.importers.readers.source import FileFingerprint, Source, read_source
 from specflow.importers.readers.stores import Value
+from specflow.importers.readers.xls import read_xls
 from specflow.importers.readers.xlsx import read_xlsx
 
 __all__ = [
@@ -62,16 +67,21 @@ __all__ = [
 
 @dataclass(frozen=True, slots=True)
 class Reader:
-    """A file format: what it is called, the endings it goes by, and the function that reads it."""
+    """A file format: what it is called, the endings it goes by, what its files are, and the function that reads it."""
 
     title: str
     endings: tuple[str, ...]
+    content: Content
     read: Callable[[Source], list[Grid]]
 
 
 READERS = (
-    Reader("workbook", (".xlsx", ".xlsm"), read_xlsx),
-    Reader("delimited text", (".csv", ".tsv", ".txt", ".dat"), read_csv),
+    Reader("workbook", (".xlsx", ".xlsm"), Content.XLSX, read_xlsx),
+    Reader("old binary workbook", (".xls",), Content.XLS, read_xls),
+    Reader("OpenDocument spreadsheet", (".ods",), Content.ODS, read_ods),
+    Reader("JSON Lines", (".jsonl", ".ndjson"), Content.TEXT, read_json_lines),
+    Reader("delimited text", (".csv", ".tsv", ".txt", ".dat"), Content.TEXT, read_csv),
+    Reader("tables of a web page", (".html", ".htm"), Content.HTML, read_html),
 )
 
 
@@ -97,17 +107,41 @@ class GridFile(Sequence[Grid]):
 
 
 def open_grids(path: str | Path, expected: FileFingerprint | None = None) -> GridFile:
-    """Read a file, by its ending, into grids: one a worksheet, one for a csv file.
+    """Read a file into grids: one a worksheet, one for a text file.
 
+    Where the content is certainly of another kind than the ending says, it is read as what it is, with a note.
     ``expected`` is the fingerprint seen at an earlier look: other content is then refused. Raises FileError (message,
     place, remedy) for every file that cannot be read.
     """
     path = Path(path)
     source = read_source(path, expected)
-    reader = next((reader for reader in READERS if path.suffix.lower() in reader.endings), None)
-    if reader is None:
+    ending = path.suffix.lower()
+    named = next((reader for reader in READERS if ending in reader.endings), None)
+    if named is None:
         known = ", ".join(ending for reader in READERS for ending in reader.endings)
         raise FileError(
             f"files of the kind {path.suffix!r} are not read", where=path.name, hint=f"known: {known}"
         )
-    return GridFile(source.fingerprint, tuple(reader.read(source)))
+    content = content_of(source)
+    if content is named.content:
+        return GridFile(source.fingerprint, tuple(named.read(source)))
+    true = next(reader for reader in reversed(READERS) if reader.content is content)
+    grids = true.read(source)
+    if content is Content.TEXT and (grids[0].last_column < 2 or len(grids[0].rows) < 2 or not _is_clean(source)):
+        raise FileError(
+            f"this is {content} without a table, and not what its ending says",
+            where=path.name,
+            hint="give it its true ending, or export it again",
+        )
+    note = f"its ending is {ending}, but the file is {content}, and was read so"
+    return GridFile(
+        source.fingerprint, tuple(replace(grid, notes=(note, *grid.notes)) for grid in grids)
+    )
+
+
+def _is_clean(source: Source) -> bool:
+    """Text without a doubt: nothing had to be guessed to decode it."""
+    try:
+        return "\0" not in source.content.decode()
+    except UnicodeDecodeError:
+        return source.content.startswith((b"\xff\xfe", b"\xfe\xff"))

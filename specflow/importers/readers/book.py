@@ -68,10 +68,8 @@ def _relation_id(element: Element) -> str:
 
 
 def _no_workbook(archive: Archive) -> FileError:
-    if "xl/workbook.bin" in archive:
-        message, hint = "this is a binary workbook (.xlsb)", "save it as .xlsx"
-    elif "content.xml" in archive:
-        message, hint = "this is an OpenDocument file", "save it as .xlsx"
-    else:
-        message, hint = "this is a zip archive, but no workbook", "unpack it, or save the workbook as .xlsx"
-    return FileError(message, where=archive.name, hint=hint)
+    return FileError(
+        "this is a zip archive, but no workbook",
+        where=archive.name,
+        hint="unpack it, or save the workbook as .xlsx",
+    )

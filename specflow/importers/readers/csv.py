@@ -16,17 +16,9 @@ MAX_FIELDS = 16_000_000
 LARGE_BYTES = 4 * 1024 * 1024
 """Larger files are read into columns of numbers where they can."""
 
-_WORKBOOK_HEADS = (b"PK\x03\x04", b"\xd0\xcf\x11\xe0")
-
 
 def read_csv(source: Source) -> list[Grid]:
     """The table of a text file. Raises FileError for content that is no text or that nothing can be made of."""
-    if source.content.startswith(_WORKBOOK_HEADS):
-        raise FileError(
-            "this is a workbook or archive with the ending of a text file",
-            where=source.name,
-            hint="give it its true ending (.xlsx)",
-        )
     if len(source.content) > LARGE_BYTES and (grid := read_large_text(source, _layout)) is not None:
         return [grid]
     text, notes = decode(source)

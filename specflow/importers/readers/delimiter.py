@@ -47,7 +47,7 @@ def find_layout(lines: Sequence[str]) -> Layout:
     fields = [field for line in sample for field in split(line, best)]
     if best == ",":
         _refuse_decimal_comma(sample, best_width)
-    return Layout(best, best_width, _decimal(fields))
+    return Layout(best, best_width, decimal_mark(fields))
 
 
 def split(line: str, delimiter: str) -> list[str]:
@@ -105,7 +105,8 @@ def _score(sample: Sequence[str], delimiter: str) -> tuple[float, int]:
     return sum(widths.values()) / len(rows) * (0.2 + count / len(rows)) * (1 + numbers), width
 
 
-def _decimal(fields: Sequence[str]) -> str:
+def decimal_mark(fields: Sequence[str]) -> str:
+    """The mark before decimals in these fields; ``""`` when each comma could as well stand between thousands."""
     numbers = [field for field in fields if is_number(field)]
     commas = [number for number in numbers if "," in number]
     if not commas or any("." in number for number in numbers):

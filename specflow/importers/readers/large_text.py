@@ -160,7 +160,7 @@ class _Reading:
                 return None
             block = block.replace(b",", b".")
         allowed = b"0123456789+-.eE \r\n" + (b"\t" if delimiter is None else delimiter.encode())
-        if block.translate(None, allowed):
+        if block.translate(None, allowed) or not block.strip():
             return None
         try:
             numbers = np.loadtxt(

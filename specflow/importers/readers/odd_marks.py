@@ -11,6 +11,8 @@ Integers = NDArray[np.int64]
 Runs = tuple[Integers, Integers, Integers, Integers]
 """Column, first row, last row and code of runs; four arrays of one length."""
 
+_MOST_SINGLE = 65536
+
 
 class OddMarks:
     """Marks come in any order, as arrays or one by one; ``cells`` turns them into runs down each column."""
@@ -35,6 +37,21 @@ class OddMarks:
     def add_one(self, row: int, column: int, cell: OddCell) -> None:
         """Mark one cell."""
         self._single.append((row, column, self.code(cell)))
+        if len(self._single) >= _MOST_SINGLE:
+            self._gather()
+
+    def _gather(self) -> None:
+        if self._single:
+            self.add(*np.array(self._single, dtype=np.int64).T)
+            self._single = []
+
+    def add_run(self, column: int, first: int, last: int, cell: OddCell) -> None:
+        """Mark rows ``first`` to ``last``, both included, of one column."""
+        if first == last:
+            self.add_one(first, column, cell)
+        else:
+            code = self.code(cell)
+            self._runs.append((np.array([column]), np.array([first]), np.array([last]), np.array([code])))
 
     def extend(self, first_row: int, first_column: int, last_row: int, last_column: int) -> None:
         """Cells that hold something lie within these bounds."""
@@ -52,9 +69,7 @@ class OddMarks:
 
     def cells(self) -> OddCells:
         """The marks as runs; of several marks on one cell the last one added stands."""
-        if self._single:
-            self.add(*np.array(self._single, dtype=np.int64).T)
-            self._single = []
+        self._gather()
         if not self._runs:
             return OddCells()
         runs = _joined(*(np.concatenate(parts) for parts in zip(*self._runs, strict=True)))

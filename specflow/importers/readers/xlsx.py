@@ -12,6 +12,7 @@ from specflow.errors import FileError
 from specflow.importers.readers.archive import Archive
 from specflow.importers.readers.book import Book, read_book
 from specflow.importers.readers.cell_values import CellValues
+from specflow.importers.readers.contents import Content, content_of
 from specflow.importers.readers.grid import CellRange, Grid, OddKind, address
 from specflow.importers.readers.shared_texts import read_shared_texts
 from specflow.importers.readers.sheet_scan import SheetScan, scan_sheet
@@ -29,8 +30,6 @@ STREAMED_BYTES = 32 * 1024 * 1024
 """Sheets whose XML is longer are read into typed columns: about 700,000 cells."""
 
 _TEXTS, _MACROS = "xl/sharedStrings.xml", "xl/vbaProject.bin"
-_OLE = b"\xd0\xcf\x11\xe0\xa1\xb1\x1a\xe1"
-_ENCRYPTED = "EncryptedPackage".encode("utf-16-le")
 
 
 def read_xlsx(source: Source) -> list[Grid]:
@@ -53,20 +52,12 @@ def read_xlsx(source: Source) -> list[Grid]:
 
 def open_archive(source: Source) -> Archive:
     """The zip archive of a workbook; FileError says what the file is when it is none."""
-    head = source.content[:512]
-    if head.startswith(b"PK"):
-        return Archive(source)
-    if head.startswith(_OLE) and _ENCRYPTED in source.content:
-        message, hint = "the workbook is protected by a password", "open it and save it without a password"
-    elif head.startswith(_OLE):
-        message, hint = "this is a workbook of the old binary format (.xls)", "save it as .xlsx"
-    elif head.lstrip(b"\xef\xbb\xbf \t\r\n")[:1] == b"<":
-        message, hint = "this is a web page or XML text, not a workbook", "open it and save it as .xlsx"
-    elif b"\0" not in head:
-        message, hint = "this is plain text, not a workbook", "rename it to .csv if it is a table"
-    else:
-        message, hint = "this is not a workbook: it is no zip archive", "save it as .xlsx"
-    raise FileError(message, where=source.name, hint=hint)
+    content = content_of(source)
+    if content is not Content.XLSX:
+        raise FileError(
+            f"this is {content}, not a workbook (.xlsx)", where=source.name, hint="save it as .xlsx"
+        )
+    return Archive(source)
 
 
 class _Sheet:

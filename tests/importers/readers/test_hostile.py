@@ -45,12 +45,17 @@ def patched_size(content: bytes, part: str, size: int) -> bytes:
 @pytest.mark.parametrize(
     ("content", "what"),
     [
-        (b"<html><table><tr><td>Gain</td></tr></table></html>", "a web page or XML text"),
-        (b"\xef\xbb\xbf  <?xml version='1.0'?><Workbook/>", "a web page or XML text"),
-        (b"Freq,Gain\n1,2\n", "this is plain text"),
-        (OLE + b"\0" * 600 + "Workbook".encode("utf-16-le"), "old binary format (.xls)"),
+        (b"<html><table></table></html>", "a web page without a table"),
+        (b"\xef\xbb\xbf  <?xml version='1.0'?><Workbook/>", "XML text, not a table"),
+        (
+            b"<?xml version='1.0'?><Workbook xmlns='urn:schemas-microsoft-com:office:spreadsheet'/>",
+            "as XML text",
+        ),
+        (b"Measured on Monday\n", "text without a table"),
+        (OLE + b"\0" * 600 + "Workbook".encode("utf-16-le"), "damaged"),
+        (OLE + b"\0" * 600 + "WordDocument".encode("utf-16-le"), "no workbook"),
         (OLE + b"\0" * 600 + "EncryptedPackage".encode("utf-16-le"), "protected by a password"),
-        (b"%PDF-1.7\n\x00\x01\x02", "no zip archive"),
+        (b"%PDF-1.7\n\x00\x01\x02", "this is no text file"),
         (b"PK\x03\x04", "zip directory cannot be read"),
         (b"PK\x05\x06" + b"\0" * 18, "no workbook"),
     ],
@@ -61,7 +66,11 @@ def test_files_of_another_kind_are_named(tmp_path: Path, content: bytes, what: s
 
 @pytest.mark.parametrize(
     ("part", "what"),
-    [("word/document.xml", "no workbook"), ("xl/workbook.bin", ".xlsb"), ("content.xml", "OpenDocument")],
+    [
+        ("word/document.xml", "no workbook"),
+        ("xl/workbook.bin", ".xlsb"),
+        ("content.xml", "no well-formed XML"),
+    ],
 )
 def test_archives_of_another_kind_are_named(tmp_path: Path, part: str, what: str) -> None:
     with zipfile.ZipFile(tmp_path / "a.xlsx", "w") as archive:

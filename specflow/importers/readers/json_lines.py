@@ -1,0 +1,180 @@
+"""JSON Lines (.jsonl, .ndjson) of automated benches: one object a line, as one grid with the keys for headers.
+
+The row is the line number of the file, so the headers stand in row 0, above the first line. Nested objects are
+flattened with dots. ``{"value": 1.2, "unit": "dB"}`` is one quantity: where all lines agree in the unit the header is
+``gain (dB)``, else ``gain.value`` and ``gain.unit`` are columns of their own. What cannot be one value of one key (a
+broken line, a key that stands twice) is an error cell in its place, with a note.
+"""
+
+from __future__ import annotations
+
+import json
+from collections import Counter
+from dataclasses import dataclass, field
+from typing import Any
+
+from specflow.errors import FileError
+from specflow.importers.readers.encoding import decode
+from specflow.importers.readers.grid import Grid, OddCell, OddKind
+from specflow.importers.readers.odd_marks import OddMarks
+from specflow.importers.readers.source import Source
+from specflow.importers.readers.stores import Value
+
+MAX_CELLS = 16_000_000
+MAX_KEYS = 2_000
+
+_EXACT = 2**53
+_MOST_NAMED = 5
+_TWICE = OddCell(OddKind.ERROR, "the key stands twice in this line")
+
+
+@dataclass(slots=True)
+class _Line:
+    """One line: its cells by key, the keys that stand twice, and what is wrong with the line as a whole."""
+
+    cells: dict[str, Value] = field(default_factory=dict)
+    twice: set[str] = field(default_factory=set)
+    lists: int = 0
+    broken: str = ""
+
+
+class _Pairs(list[tuple[str, Any]]):
+    """The pairs of an object in order, with repeated keys."""
+
+
+def read_json_lines(source: Source) -> list[Grid]:
+    """The objects of a file. Raises FileError for content that is no text or holds no object a line."""
+    text, notes = decode(source)
+    lines = [_read_line(line) if line.strip() else None for line in text.rstrip("\n").split("\n")]
+    read = [line for line in lines if line is not None]
+    sound = [line for line in read if not line.broken]
+    if 2 * len(sound) <= len(read):
+        first = next((line.broken for line in read), "it is empty")
+        raise FileError(
+            f"{len(read) - len(sound)} of {len(read)} lines are no JSON object ({first})",
+            where=source.name,
+            hint="write one object a line, not a list or an object over several lines",
+        )
+    keys = list(dict.fromkeys(key for line in sound for key in (*line.cells, *line.twice)))
+    _check_size(source, keys, len(lines))
+    headers = _headers(keys, sound)
+    grid_rows: list[list[Value]] = [list(headers.values())]
+    grid_rows += [[] if line is None else [line.cells.get(key, "") for key in headers] for line in lines]
+    return [
+        Grid(
+            name=source.name,
+            rows=grid_rows,
+            file=source.name,
+            first_row=0,
+            odd=_marks(lines, list(headers)).cells(),
+            notes=(*notes, *_notes(lines, keys)),
+        )
+    ]
+
+
+def _read_line(text: str) -> _Line:
+    line = _Line()
+    try:
+        found = json.loads(text, object_pairs_hook=_Pairs, parse_constant=str, parse_int=_whole)
+    except (ValueError, RecursionError) as error:
+        line.broken = str(error)[:80]
+        return line
+    if not isinstance(found, _Pairs):
+        line.broken = f"it is a {type(found).__name__}, not an object"
+        return line
+    _flatten(found, "", line)
+    return line
+
+
+def _whole(text: str) -> Value:
+    """A whole number; one that has no exact float stays as it is, since it is rather a name than a reading."""
+    number = int(text)
+    return float(number) if abs(number) <= _EXACT else number
+
+
+def _flatten(pairs: _Pairs, prefix: str, line: _Line) -> None:
+    for name, value in pairs:
+        key = f"{prefix}{name}"
+        if isinstance(value, _Pairs):
+            _flatten(value, f"{key}.", line)
+            continue
+        if key in line.cells or key in line.twice:
+            line.twice.add(key)
+            line.cells.pop(key, None)
+            continue
+        if isinstance(value, list):
+            line.lists += 1
+            value = json.dumps(value, default=list, ensure_ascii=False)
+        line.cells[key] = "" if value is None else value
+
+
+def _check_size(source: Source, keys: list[str], lines: int) -> None:
+    if len(keys) > MAX_KEYS or len(keys) * lines > MAX_CELLS:
+        raise FileError(
+            f"{len(keys):,} keys in {lines:,} lines are more than are read",
+            where=source.name,
+            hint="write one record a line, with the same keys in each; or split the file",
+        )
+
+
+def _headers(keys: list[str], lines: list[_Line]) -> dict[str, str]:
+    """Key -> header, without the units that went into a header."""
+    headers = {key: key for key in keys}
+    for key in keys:
+        base, _, last = key.rpartition(".")
+        unit = next((f"{base}.{name}" for name in ("unit", "units") if f"{base}.{name}" in headers), "")
+        if last != "value" or not base or not unit or base in headers:
+            continue
+        units = {
+            line.cells.get(unit, "") for line in lines if line.cells.get(key, "") != "" or key in line.twice
+        }
+        units |= {line.cells[unit] for line in lines if line.cells.get(unit, "") != ""}
+        alone = next(iter(units)) if len(units) == 1 else ""
+        if isinstance(alone, str) and alone.strip() and not any(unit in line.twice for line in lines):
+            headers[key] = f"{base} ({alone.strip()})"
+            del headers[unit]
+    return headers
+
+
+def _marks(lines: list[_Line | None], keys: list[str]) -> OddMarks:
+    marks = OddMarks()
+    places = {key: column for column, key in enumerate(keys, start=1)}
+    for row, line in enumerate(lines, start=1):
+        if line is None:
+            continue
+        for key in line.twice:
+            if key in places:
+                marks.add_one(row, places[key], _TWICE)
+        if line.broken:
+            for column in places.values():
+                marks.add_one(row, column, OddCell(OddKind.ERROR, f"broken line: {line.broken}"))
+    return marks
+
+
+def _notes(lines: list[_Line | None], keys: list[str]) -> list[str]:
+    read = [(row, line) for row, line in enumerate(lines, start=1) if line is not None]
+    notes = _counted("no JSON object", [row for row, line in read if line.broken])
+    twice = Counter(key for _, line in read for key in line.twice)
+    for key in twice:
+        notes += _counted(f"two values of {key!r}", [row for row, line in read if key in line.twice])
+    notes += _counted("a list, which is kept as text", [row for row, line in read if line.lists])
+    notes += [
+        f"{key!r} is a value in some lines and an object in others"
+        for key in keys
+        if any(other.startswith(f"{key}.") for other in keys)
+    ]
+    for key in keys:
+        kinds = {type(value) for _, line in read if (value := line.cells.get(key, "")) != ""}
+        if len(kinds - {int}) > 1:
+            names = sorted(
+                {float: "numbers", str: "texts", bool: "truth values"}.get(kind, "") for kind in kinds
+            )
+            notes.append(f"{key!r} holds " + " and ".join(filter(None, names)))
+    return notes
+
+
+def _counted(what: str, rows: list[int]) -> list[str]:
+    if not rows:
+        return []
+    named = ", ".join(map(str, rows[:_MOST_NAMED])) + (" and others" if len(rows) > _MOST_NAMED else "")
+    return [f"{'line' if len(rows) == 1 else 'lines'} {named}: {what}"]
