@@ -14,6 +14,7 @@ from specflow.importers.measured.mapping import read_mappings, write_mapping
 from specflow.importers.measured.meaning import read_meanings
 from specflow.importers.measured.network import read_network_tables
 from specflow.importers.measured.proposal import Proposal, propose
+from specflow.importers.measured.repeats import without_repeats
 from specflow.importers.measured.result import (
     ColumnReading,
     MeasuredTable,
@@ -79,7 +80,7 @@ def read_measurements(
         if found.outside:
             findings.append(_outside(grid, found.outside))
     findings += [_unused(file.fingerprint.name, layout, mapping_name) for layout in mappings.unused()]
-    tables = [_read(one, context, person, include_hidden_rows) for one in located]
+    tables = without_repeats([_read(one, context, person, include_hidden_rows) for one in located])
     findings += [finding for table in tables for finding in table.findings]
     if not located:
         findings.append(_nothing(file, skipped))

@@ -22,7 +22,7 @@ from specflow.importers.measured.tables import FoundTable, table_below
 from specflow.importers.readers import Grid, Value, is_blank
 from specflow.parameters import suits
 
-_NUMBER_AND_UNIT = re.compile(r"^[+\-−]?\s?[0-9]+(?:[.,][0-9]+)?\s*(?P<unit>[^\s0-9].*)$")
+_NUMBER_AND_UNIT = re.compile(r"^[+\-−]?\s?[0-9]+(?:[.,][0-9]+)?\s*(?P<unit>(?:[^\W\d_]|[°%]).*)$")
 _ROWS_ABOVE = 3
 
 
@@ -199,7 +199,7 @@ def _carried_unit(grid: Grid, found: NumberRow) -> str:
     """The unit that all numbers carry; "" where they carry none, or several."""
     units = set()
     for column in found.columns:
-        match = _NUMBER_AND_UNIT.match(str(grid.value(found.row, column)).strip())
+        match = _NUMBER_AND_UNIT.match(_words(grid.value(found.row, column)))
         units.add(match["unit"].strip() if match else "")
     return units.pop() if len(units) == 1 else ""
 

@@ -15,12 +15,15 @@ from specflow.importers.measured.facts import states_something
 from specflow.importers.measured.header_text import header_key
 from specflow.importers.measured.located import LocatedTable
 from specflow.importers.measured.meaning import read_meanings
+from specflow.importers.measured.peak_list import read_peak_list, with_floors
 from specflow.importers.measured.pivot import stack, with_location
 from specflow.importers.measured.rejects import Rejects
 from specflow.importers.measured.result import ColumnReading, MeasuredTable, Question, Role
+from specflow.importers.measured.row_kinds import by_row_kind
 from specflow.importers.measured.selection import select_rows
 from specflow.importers.measured.slip_findings import slip_findings
 from specflow.importers.measured.stated import PERSON, Stated, collect
+from specflow.importers.measured.statements import is_reading
 from specflow.importers.measured.subject import find_block, item_name, item_notes
 from specflow.importers.measured.values import column_name, read_values
 from specflow.importers.measured.words import fill_down, read_dates, read_words
@@ -62,7 +65,7 @@ def read_table(located: LocatedTable, context: Context, person: Mapping[str, str
     _ask_about_groups(work)
     work.meanings = read_meanings(table, context, mapping, stated)
     work.questions += stated.questions
-    work.questions += [meaning.question for meaning in work.meanings if meaning.question]
+    work.questions += _asked_of_columns(work)
     given = {meaning.dimension for meaning in work.of(Role.CONDITION)}
     work.questions += [doubt for name, doubt in stated.doubts.items() if name not in given]
     _ask_about_columns(work)
@@ -90,6 +93,14 @@ def read_table(located: LocatedTable, context: Context, person: Mapping[str, str
         document=document,
         columns=columns,
     )
+
+
+def _asked_of_columns(work: TableWork) -> list[Question]:
+    """The questions about columns; where it is asked how the table lies, numbers as headers are not asked about again."""
+    asked = [meaning for meaning in work.meanings if meaning.question]
+    if work.table.doubts:
+        asked = [meaning for meaning in asked if not is_reading(meaning.header.text)]
+    return [meaning.question for meaning in asked if meaning.question]
 
 
 def _note_idle_entries(work: TableWork) -> None:
@@ -131,7 +142,12 @@ def _ask_about_groups(work: TableWork) -> None:
     columns = {header.column for header in table.headers}
     for area in table.grid.merged:
         over = {column for column in columns if area.first_column <= column <= area.last_column}
-        if area.first_row != table.header_row - 1 or area.first_row != area.last_row or len(over) < 2:
+        if (
+            area.first_row == table.group_row
+            or area.first_row != table.header_row - 1
+            or area.first_row != area.last_row
+            or len(over) < 2
+        ):
             continue
         text = str(table.grid.value(area.first_row, area.first_column)).strip()
         says = states_something(text) or code_key(text) in work.context.snapshot.items_by_name
@@ -220,7 +236,14 @@ def _evidence(
         return None, None
     identity = Identity(block, method, stage, key, title, sheet)
     work.findings += slip_findings(work, columns, values.documents)
-    document = make_document(work, identity, values.documents, conditions.documents, columns)
+    columns, documents = by_row_kind(work, columns, values.documents)
+    peaks = read_peak_list(work, title)
+    if peaks is not None:
+        grown = with_floors(work, peaks, columns, documents)
+        columns, documents = grown.columns, grown.values
+    document = None
+    if not work.questions:
+        document = make_document(work, identity, documents, conditions.documents, columns, peaks)
     return (None, None) if document is None else (document, columns)
 
 

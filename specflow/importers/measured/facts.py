@@ -62,6 +62,12 @@ def read_across(grid: Grid, key_row: int, value_row: int) -> tuple[Fact, ...]:
     return tuple(facts)
 
 
+def pair_in(text: str) -> tuple[str, str] | None:
+    """Return the key and the value that one text states: "Supply voltage = 5 V"; None when it is none such."""
+    found = _PAIR.match(text)
+    return (found["key"].strip(), " ".join(found["value"].split())) if found and found["value"] else None
+
+
 def states_something(text: str) -> bool:
     """Whether a line says a value of something: a key with a value, or a number with a unit."""
     pair = _PAIR.match(text)

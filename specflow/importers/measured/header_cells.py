@@ -10,6 +10,9 @@ from specflow.importers.readers import Grid, Value, address, column_letter, is_b
 
 _NO_UNIT = ("", "-", "—", "–", "n/a")
 
+#: What stands before a row of units, and is none itself.
+UNIT_WORDS = frozenset(("unit", "units", "uom", "einheit"))
+
 
 @dataclass(frozen=True, slots=True)
 class HeaderCell:
@@ -95,6 +98,8 @@ def find_units_row(grid: Grid, row: int, headers: tuple[HeaderCell, ...]) -> int
     texts = [value.strip() if isinstance(value, str) else None for value in values]
     if any(text is None for text in texts):
         return None
+    if texts and texts[0] is not None and texts[0].casefold() in UNIT_WORDS:
+        texts[0] = ""
     units = [_unit_and_k(text)[0] for text in texts if text is not None and text not in _NO_UNIT]
     if units and all(known_unit(unit) is not None and not looks_numeric(unit) for unit in units):
         return row
@@ -103,7 +108,11 @@ def find_units_row(grid: Grid, row: int, headers: tuple[HeaderCell, ...]) -> int
 
 def with_unit(grid: Grid, header: HeaderCell, row: int) -> HeaderCell:
     text, k = _unit_and_k(str(grid.value(row, header.column)).strip())
-    return header if text in _NO_UNIT else replace(header, unit=text, unit_row=row, k=k)
+    return (
+        header
+        if text in _NO_UNIT or text.casefold() in UNIT_WORDS
+        else replace(header, unit=text, unit_row=row, k=k)
+    )
 
 
 def _unit_and_k(text: str) -> tuple[str, float | None]:

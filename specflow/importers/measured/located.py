@@ -18,6 +18,7 @@ from specflow.importers.measured.placed import clipped, first_row_above, table_i
 from specflow.importers.measured.settled import GivenMappings, Mappings, Settled, kept_under
 from specflow.importers.measured.stated import holds_below
 from specflow.importers.measured.tables import FoundTable, cut_table, rows_of_numbers
+from specflow.importers.measured.titles import with_titles
 from specflow.importers.readers import CellRange, Grid
 
 __all__ = ["GivenMappings", "LocatedTable", "LocatedTables", "Mappings", "locate_tables"]
@@ -97,7 +98,7 @@ class _Locator:
 
     def search(self, grid: Grid, has_areas: bool) -> None:
         """Find tables where none was stated."""
-        found = find_all(grid, self._context)
+        found = with_titles(find_all(grid, self._context), self._context)
         if not found and not has_areas:
             self.found.skipped.append(
                 f"{self.where}: no table was found (a row of headers with numbers below)"

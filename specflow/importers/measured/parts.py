@@ -7,7 +7,9 @@ from dataclasses import replace
 import numpy as np
 
 from specflow.conditions import find_dimension
+from specflow.importers.measured.at_headers import pivots_of_headers
 from specflow.importers.measured.context import Context
+from specflow.importers.measured.groups import group_parts
 from specflow.importers.measured.header_text import read_header
 from specflow.importers.measured.long_form import find_long, long_parts
 from specflow.importers.measured.mapping_parts import LayoutMapping
@@ -30,11 +32,15 @@ def parts_of(table: FoundTable, mapping: LayoutMapping, context: Context) -> lis
     long = mapping.long or find_long(table, mapping, context)
     if long is not None:
         return long_parts(table, long, read_as, context)
-    pivots = mapping.pivots or (() if _is_settled(mapping) else table.pivots)
+    pivots = mapping.pivots or (
+        () if _is_settled(mapping) else table.pivots or pivots_of_headers(table, context)
+    )
     if mapping.pivots or _is_settled(mapping):
         table = replace(table, doubts=())
     if len(pivots) > 1:
         return _pivot_parts(table, replace(read_as, pivots=pivots), context)
+    if not pivots:
+        return [(part, read_as) for part in group_parts(table, context)]
     return [(table, replace(read_as, pivots=pivots))]
 
 

@@ -52,6 +52,10 @@ _SUMMARY = frozenset(
         "upper",
         "lower",
         "tolerance",
+        "typ",
+        "typical",
+        "nom",
+        "nominal",
     ]
 )
 _SUMMARY_PHRASES = (
@@ -106,7 +110,7 @@ def _summary_rows(table: FoundTable, meanings: Sequence[ColumnMeaning], rows: Ro
     for meaning in meanings:
         cells = table.cells(meaning.column)
         texts = cells.distinct if cells.odd else ()
-        words = {text for text in texts if isinstance(text, str) and _is_summary(text)}
+        words = {text for text in texts if isinstance(text, str) and is_summary(text)}
         for row in cells.odd if words else ():
             if row in wanted and cells.value(row) in words:
                 first = all(is_blank(table.grid.value(row, one.column)) for one in before)
@@ -116,7 +120,8 @@ def _summary_rows(table: FoundTable, meanings: Sequence[ColumnMeaning], rows: Ro
     return found
 
 
-def _is_summary(text: str) -> bool:
+def is_summary(text: str) -> bool:
+    """Whether a word stands for a row that is no reading: "Mean", "Limit", "Std dev"."""
     if text.rstrip().endswith(":"):
         return True
     plain = re.sub(r"[:.\s]+", " ", text.casefold()).strip()

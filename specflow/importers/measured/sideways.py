@@ -4,14 +4,15 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 
-from specflow.conditions import find_dimension
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.facts import read_preamble
+from specflow.importers.measured.header_cells import UNIT_WORDS, HeaderCell
 from specflow.importers.measured.header_text import header_key, known_unit, read_header
 from specflow.importers.measured.items import names_items
 from specflow.importers.measured.place_facts import amounts_of
 from specflow.importers.measured.result import Question
 from specflow.importers.measured.roles import role_of_words
+from specflow.importers.measured.selection import is_summary
 from specflow.importers.measured.statements import is_reading
 from specflow.importers.measured.tables import FoundTable, cut_table
 from specflow.importers.readers import CellRange, Grid, Value, is_blank, looks_numeric
@@ -21,7 +22,6 @@ _CORNERS = frozenset(
     ("", "parameter", "parameters", "quantity", "measurement", "characteristic", "property", "test", "metric", "name",
      "item", "description", "messgröße", "symbol")
 )  # fmt: skip
-_UNIT_WORDS = frozenset(("unit", "units", "uom", "einheit"))
 
 
 @dataclass(frozen=True, slots=True)
@@ -78,7 +78,9 @@ def _region(grid: Grid, top: int, stop: int, context: Context) -> Region | None:
             and quantities
             and not _has_ids(grid, row, last, column)
         ):
-            first = row - 1 if row > top and _is_row_of_names(grid, row - 1, row, column) else row
+            first = row
+            while first > top and _is_row_of_names(grid, first - 1, (row, last), column):
+                first -= 1
             width = max(len(grid.row(one)) for one in range(first, last + 1))
             return Region(first, last, column, width)
         row = last + 1
@@ -113,17 +115,23 @@ def _has_ids(grid: Grid, first: int, last: int, column: int) -> bool:
     return len(set(labels)) < len(labels)
 
 
-def _is_row_of_names(grid: Grid, row: int, below: int, column: int) -> bool:
+def _is_row_of_names(grid: Grid, row: int, body: tuple[int, int], column: int) -> bool:
     """Whether a row names the columns of readings below it: "Parameter | SN 1 | SN 2", with a corner or without."""
-    names = [
-        value for place, value in enumerate(grid.row(row), start=1) if place > column and not is_blank(value)
-    ]
-    numbers = [
-        value
-        for place, value in enumerate(grid.row(below), start=1)
-        if place > column and not is_blank(value)
-    ]
-    return bool(names) and len(numbers) - 1 <= len(names) <= len(numbers) and row not in grid.comment_rows
+    corner = grid.value(row, column)
+    if row in grid.comment_rows or not (is_blank(corner) or _is_label(corner)):
+        return False
+    named = _columns(grid, row, column)
+    filled = set().union(*(_columns(grid, one, column) for one in range(body[0], body[1] + 1)))
+    return bool(named) and len(filled - named) <= 1 and not named - filled
+
+
+def _columns(grid: Grid, row: int, label: int) -> set[int]:
+    """The columns right of the labels in which something is written."""
+    return {
+        column
+        for column, value in enumerate(grid.row(row), start=1)
+        if column > label and not is_blank(value)
+    }
 
 
 def _with_corner(table: FoundTable, context: Context) -> FoundTable:
@@ -152,13 +160,13 @@ def _with_corner(table: FoundTable, context: Context) -> FoundTable:
     return replace(table, headers=tuple(headers), unnamed=tuple(unnamed), doubts=tuple(doubts))
 
 
-def _header(table: FoundTable, column: int):  # type: ignore[no-untyped-def]
+def _header(table: FoundTable, column: int) -> HeaderCell:
     return replace(table.headers[0], column=column, text="item", unit="", unit_row=None, k=None)
 
 
 def _texts(table: FoundTable, column: int) -> list[str]:
     texts = [str(value).strip() for value in table.cells(column).at(table.rows) if not is_blank(value)]
-    return [text for text in texts if header_key(text) not in _UNIT_WORDS]
+    return [text for text in texts if header_key(text) not in UNIT_WORDS and not is_summary(text)]
 
 
 def _corner_question(table: FoundTable, column: int, texts: list[str]) -> Question:

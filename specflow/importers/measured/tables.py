@@ -80,7 +80,7 @@ class FoundTable:
     columns), ``facts`` what is said of that part alone; ``axis`` is a condition that no column holds, ``pivots`` are
     columns of one quantity at several conditions, as their headers say; ``doubts`` are
     questions about where the table stands and how it lies, ``notes`` what is said about that. ``title_rows`` are rows
-    above that belong to the headers. ``words_above`` stand for the headers of a table that has none; one without any
+    above that belong to the headers, ``group_row`` one that is read already. ``words_above`` stand for the headers of a table that has none; one without any
     words is not known again (``has_words``).
     """
 
@@ -102,6 +102,7 @@ class FoundTable:
     doubts: tuple[Question, ...] = ()
     notes: tuple[str, ...] = ()
     title_rows: tuple[int, ...] = ()
+    group_row: int | None = None
     words_above: tuple[str, ...] = ()
     has_words: bool = True
     _cells: dict[int, ColumnCells] = field(default_factory=dict, repr=False, compare=False)
