@@ -147,7 +147,10 @@ def _mismatches(grounds: Sequence[Ground], workspace: Workspace) -> tuple[Mismat
     workspace.served.update([table for table, _ in served])
     if not found:
         return ()
-    return tuple(dict.fromkeys(one for one in found if (one.table, one.column) not in served))
+    # Values that were not judged are said, whatever else of their column serves.
+    return tuple(
+        dict.fromkeys(one for one in found if one.kind == "value" or (one.table, one.column) not in served)
+    )
 
 
 def _ambiguous(ground: Ground) -> tuple[RecordRef, ...]:

@@ -66,13 +66,16 @@ class Fit:
         return ValueArrays(low + self.least_db, high + self.most_db, u)
 
     def _ends(self, values: Floats) -> Floats:
-        """Return the values converted; "less than" stays open downwards in dB (down to nothing is -inf dB)."""
+        """Return the values converted; "less than" stays open downwards in dB (down to nothing is -inf dB).
+
+        A negative value has no level: NaN, while the others are judged.
+        """
         if self.convert.source.is_log or not self.convert.target.is_log:
             return self.convert(values)
-        open_ends = np.isneginf(values)
-        if not open_ends.any():
+        below = values < 0
+        if not below.any():
             return self.convert(values)
-        return np.where(open_ends, -np.inf, self.convert(np.where(open_ends, np.nan, values)))
+        return np.where(np.isneginf(values), -np.inf, self.convert(np.where(below, np.nan, values)))
 
     def _spread(self, arrays: ValueArrays) -> Floats:
         """Return u in the unit of the limit: how far the value moves when it moves by u, the larger side."""

@@ -130,7 +130,7 @@ def gather(parts: Sequence[Held], conditions: Columns, mismatches: Sequence[Mism
 
 def _refused(source: Source, error: UnitError) -> Mismatch:
     remedy = error.hint or "correct the unit in the mapping of the table"
-    return Mismatch(source.table.id, source.column.name, source.table.rows, error.message, remedy, "unit")
+    return Mismatch(source.table.id, source.column.name, source.table.rows, error.message, remedy, "value")
 
 
 def _lost(part: Held, values: ValueArrays) -> Sequence[Mismatch]:
@@ -147,7 +147,7 @@ def _lost(part: Held, values: ValueArrays) -> Sequence[Mismatch]:
     what = (
         f"{count} of {table.rows} values have no meaning in the unit of the limit ({part.fit.convert.words})"
     )
-    return (Mismatch(table.id, column.name, count, what, "look at these values in the sheet", "unit"),)
+    return (Mismatch(table.id, column.name, count, what, "look at these values in the sheet", "value"),)
 
 
 def _stacked(
