@@ -16,8 +16,9 @@ from specflow.model.snapshot import Snapshot
 from specflow.parameters import load_dictionary
 from specflow.store import ProjectStore, create_project
 from specflow.workflows.budget_outcome import HowToCompute, budget_outcome
-from tests.budgets.chains import a_chain, project_of
+from tests.budgets.chains import a_chain, project_of, unit_of
 from tests.builders import (
+    a_budget_line,
     a_conditions_set,
     a_dimension,
     a_project,
@@ -35,6 +36,15 @@ STAGES: tuple[dict[str, Any], ...] = (
     {"block": "MIX", "conversion_loss": 7.0, "noise_temperature": 900.0, "iip3": 12.0, "ip1db": 3.0, "iip2": 40.0},
     {"block": "IF", "gain": 30.0, "noise_figure": 4.0, "oip3": 30.0, "op1db": 20.0, "iip2": 35.0, "snr": 6.0},
 )  # fmt: skip
+#: Further figures by position: interferers at the input, what rejects and mixes them, and DC power.
+FURTHER: dict[int, dict[str, float]] = {
+    1: {"blocking_level": -30.0, "receiver_intermodulation": -48.0, "noise_density": -128.0, "isolation": 62.0,
+        "desensitisation": 1.0},
+    2: {"rejection": 6.0},
+    3: {"dc_power": 0.2},
+    4: {"phase_noise": -150.0, "rejection": 3.0, "dc_power": 0.5},
+    5: {"phase_noise": -158.0, "drain_efficiency": 18.0},
+}  # fmt: skip
 UNITS = {
     "gain": "dB",
     "noise_figure": "dB",
@@ -56,7 +66,13 @@ UNITS = {
     "sfdr": "dB",
     "refsens": "dBm",
     "aclr": "dB",
+    "dc_power": "W",
+    "total_efficiency": "%",
+    "pae": "%",
+    "desensitisation": "dB",
+    "blocking_level": "dBm",
 }
+NEEDS_FURTHER = ("dc_power", "total_efficiency", "pae", "desensitisation", "blocking_level")
 SMALL = ("noise_figure", "g_over_t")
 AIR = a_conditions_set(
     "CS-AIR", a_dimension("frequency", values=(17.7, 20.2)), a_dimension("temperature_ambient", "°C", values=(-25, 55))
@@ -100,7 +116,19 @@ def a_receiver(*names: str, **fields: Any) -> Budget:
         "input_level": -60.0,
         "conditions": "CS-AIR",
     }
-    return tolerances(a_chain(*STAGES, parameter=served[0], **more | fields))
+    made = tolerances(a_chain(*STAGES, parameter=served[0], **more | fields))
+    return with_further(made) if set(served) & set(NEEDS_FURTHER) else made
+
+
+def with_further(budget: Budget) -> Budget:
+    """Return the receiver with interferers, what rejects and mixes them, and DC power."""
+    blocks = {position.order: position.block for position in budget.positions}
+    lines = [
+        a_budget_line(order, blocks[order], name, value, unit=unit_of(name))
+        for order, figures in FURTHER.items()
+        for name, value in figures.items()
+    ]
+    return budget.model_copy(update={"lines": (*budget.lines, *lines)})
 
 
 def receiver_project(

@@ -45,6 +45,7 @@ Way = Literal["equal", "proportional"]
 _STEPS = 110
 _RANGE = 30.0  # decades in which a scale is looked for
 _PASSES = 3
+_NOT_SHARED = ("desensitisation", "blocking_level")
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -148,6 +149,12 @@ def plan_shares(probe: Probe, fixed: Collection[str] = ()) -> SharePlan:
 
 
 def _sharing(probe: Probe, target: Target, kept: Collection[str]) -> tuple[int, ...]:
+    if target.output.parameter in _NOT_SHARED:
+        raise CalculationError(
+            f"{target.name} ({target.output.parameter}) has no rule by which it is shared",
+            where=f"budget {probe.budget.id}",
+            hint="solve the one line that it is about with --solve, or share the limits on noise and intercepts",
+        )
     law = contribution(target.output, probe.budget)
     figure = law.figure if law is not None else ("amount" if "amount" in target.output.needs else "gain")
     return tuple(

@@ -2,6 +2,18 @@
 
 from __future__ import annotations
 
+from specflow.budgets.cascade_dc import (
+    added_efficiency,
+    added_efficiency_slopes,
+    added_efficiency_so_far,
+    dc_power,
+    dc_power_so_far,
+    dc_shares,
+    dc_slopes,
+    efficiency,
+    efficiency_slopes,
+    efficiency_so_far,
+)
 from specflow.budgets.cascade_distortion import (
     IIP2_SO_FAR,
     IIP3_SO_FAR,
@@ -27,6 +39,14 @@ from specflow.budgets.cascade_distortion import (
     sfdr_so_far,
     third_shares,
     third_slopes,
+)
+from specflow.budgets.cascade_interference import (
+    blocking,
+    blocking_slopes,
+    blocking_so_far,
+    desense,
+    desense_slopes,
+    desense_so_far,
 )
 from specflow.budgets.cascade_level import (
     eirp,
@@ -70,6 +90,8 @@ _FRIIS = "Friis, available gains"
 _GAIN, _NOISE = ("gain",), ("gain", "noise_figure")
 _SYSTEM = (*_NOISE, "source_k")
 _THIRD, _SECOND, _COMPRESSION = ("gain", "iip3"), ("gain", "iip2"), ("gain", "ip1db")
+_DC = ("dc_w", "efficiency", "added_efficiency")
+_INTERFERENCE = ("rejection", "phase_noise", "leaked_noise", "isolation")
 _APPROXIMATE = "1/IP1 = sum of G_before/IP1_i, good to about 0.5 dB"
 
 CASCADE: tuple[Output, ...] = (
@@ -215,5 +237,68 @@ CASCADE: tuple[Output, ...] = (
         sfdr_slopes,
         asks=("bandwidth",),
         is_monotonic=False,
+    ),
+    Output(
+        "dc_power",
+        "W",
+        "DC power of all elements of all positions, or output level over efficiency",
+        ("gain", "source_level"),
+        dc_power,
+        dc_power_so_far,
+        dc_slopes,
+        dc_shares,
+        ("input level", "DC power"),
+        last_gain=True,
+        wants=_DC,
+    ),
+    Output(
+        "total_efficiency",
+        "%",
+        "output power over all DC power",
+        ("gain", "source_level"),
+        efficiency,
+        efficiency_so_far,
+        efficiency_slopes,
+        asks=("input level", "DC power"),
+        is_monotonic=False,
+        last_gain=True,
+        wants=_DC,
+    ),
+    Output(
+        "pae",
+        "%",
+        "output power less input power over all DC power",
+        ("gain", "source_level"),
+        added_efficiency,
+        added_efficiency_so_far,
+        added_efficiency_slopes,
+        asks=("input level", "DC power"),
+        is_monotonic=False,
+        last_gain=True,
+        wants=_DC,
+    ),
+    Output(
+        "desensitisation",
+        "dB",
+        "1 + interference over noise, both at the input",
+        _SYSTEM,
+        desense,
+        desense_so_far,
+        desense_slopes,
+        asks=("bandwidth", "interference"),
+        is_monotonic=False,
+        wants=("iip3", "blocker", "tones", *_INTERFERENCE),
+    ),
+    Output(
+        "blocking_level",
+        "dBm",
+        "reciprocal mixing with the rise of the noise that is allowed, a transmitter's noise taken off",
+        _SYSTEM,
+        blocking,
+        blocking_so_far,
+        blocking_slopes,
+        asks=("bandwidth", "phase noise", "rise allowed"),
+        is_monotonic=False,
+        wants=("allowed_rise", *_INTERFERENCE),
     ),
 )

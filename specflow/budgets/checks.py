@@ -12,6 +12,7 @@ from specflow.model.budget import Budget, BudgetLine, BudgetPosition, Law
 from specflow.parameters import Dictionary
 from specflow.units import format_value, parse_unit
 
+_NOT_NEGATIVE = ("image_rejection", "rejection", "isolation", "dc_w", "allowed_rise")
 _STATED_ONCE = ("noise_figure", "iip3", "iip2", "ip1db")
 
 
@@ -120,13 +121,13 @@ def check_line(read: ReadLine, position: BudgetPosition, where: str) -> None:
         )
     least = float(values.min())
     name = code_key(line.parameter)
-    if (name in LOSSES or read.role.figure == "image_rejection") and least < 0:
+    if (name in LOSSES or read.role.figure in _NOT_NEGATIVE) and least < 0:
         raise CalculationError(
             f"{line.parameter} is {format_value(least)} {line.unit}",
             where=where,
             hint="a loss is a positive number of dB; a gain is given as gain"
             if name in LOSSES
-            else "a rejection is a positive number of dB, 0 dB where nothing keeps the image off",
+            else "rejection, isolation, DC power and an allowed rise are positive numbers",
         )
     if name in ("noise_figure", "noise_temperature", "antenna_noise_temperature"):
         inner = read.convert(np.atleast_1d(least))

@@ -35,6 +35,8 @@ class Contribution:
 
 def contribution(output: Output, budget: Budget) -> Contribution | None:
     """Return how the positions contribute to a quantity; None where figures add plainly (gains, losses, amounts)."""
+    if "dc_w" in output.wants:
+        return _DC
     needs = set(output.needs)
     if "iip3" in needs:
         return _port("iip3", exponent(THIRD_ORDER, _law(budget)))
@@ -69,6 +71,7 @@ _NOISE = Contribution(
     lambda part, before: np.asarray(decibels(1.0 + part * before)),
     at_most=True,
 )
+_DC = Contribution("dc_w", lambda watts, _: watts, lambda part, _: part, at_most=True)
 _SUMS = {
     Law.POWER_SUM: Contribution(
         "amount", lambda level, _: np.asarray(ratio(level)), lambda part, _: np.asarray(decibels(part)), True

@@ -39,7 +39,7 @@ class Prepared:
     @property
     def needed(self) -> set[str]:
         """The figures that any of the outputs takes."""
-        return {figure for output in self.outputs for figure in output.needs}
+        return {figure for output in self.outputs for figure in output.takes}
 
 
 def prepare(
@@ -110,7 +110,7 @@ def _evaluated(output: Output, bars: Sequence[Bar], figures: Figures, chain: Cha
 
 def law_words(output: Output, budget: Budget) -> str:
     """Say by which law a result was combined; distortion sums say their phase."""
-    if {"iip3", "iip2"} & set(output.needs):
+    if {"iip3", "iip2"} & set(output.takes):
         return f"{output.words}, {budget.intermodulation} sum"
     return output.words
 

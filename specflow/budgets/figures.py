@@ -66,6 +66,8 @@ def figures_of(
         wanted.add("image_rejection")
     for name in wanted - {"gain", "noise_figure", "amount", *_PORTS}:
         arrays[name] = _sum_of(chain, values, name, shape)
+    if "dc_w" in arrays:
+        arrays["dc_w"] *= _counts(chain, arrays["dc_w"].ndim)
     if "antenna_gain" in arrays:
         _of_all_elements(chain, arrays["antenna_gain"])
     if "amount" in wanted:
@@ -106,6 +108,12 @@ def _sum_of(chain: Chain, values: Sequence[Floats], figure: str, shape: tuple[in
     for row in empty:
         array[row] = 0.0
     return array
+
+
+def _counts(chain: Chain, axes: int) -> Floats:
+    """Return how many elements each position has, with as many axes as figures have."""
+    counts = np.array([float(position.count) for position in chain.positions])
+    return counts.reshape(counts.shape + (1,) * (axes - 1))
 
 
 def _of_all_elements(chain: Chain, antenna_gain: Floats) -> None:
@@ -230,6 +238,8 @@ def line_slopes(chain: Chain, values: Sequence[Floats], figures: Figures, gradie
             along = along + _through_gain(chain, read, figures, gradient, read.row in lossy)
         if read.role.figure == "amount":
             along = along * of_elements(chain, read)[0]
+        if read.role.figure == "dc_w":
+            along = along * chain.positions[read.row].count
         if np.any(along):
             slopes[number] = along * read.figure_slope(np.broadcast_to(values[number], shape))
     return slopes

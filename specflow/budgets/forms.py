@@ -98,6 +98,16 @@ CASCADE_ROLES: dict[str, Role] = {
     "output_power": Role("source_level", "dBm", AS_IT_IS),
     "snr": Role("snr", "dB", AS_IT_IS),
     "image_rejection": Role("image_rejection", "dB", AS_IT_IS),
+    "dc_power": Role("dc_w", "W", AS_IT_IS),
+    "drain_efficiency": Role("efficiency", "%", AS_IT_IS),
+    "pae": Role("added_efficiency", "%", AS_IT_IS),
+    "blocking_level": Role("blocker", "dBm", AS_IT_IS),
+    "receiver_intermodulation": Role("tones", "dBm", AS_IT_IS),
+    "phase_noise": Role("phase_noise", "dBc/Hz", AS_IT_IS),
+    "noise_density": Role("leaked_noise", "dBm/Hz", AS_IT_IS),
+    "isolation": Role("isolation", "dB", AS_IT_IS),
+    "rejection": Role("rejection", "dB", AS_IT_IS),
+    "desensitisation": Role("allowed_rise", "dB", AS_IT_IS),
 }
 
 #: The same of a mixer whose figure is a double-sideband one: what the law takes is the single-sideband figure.

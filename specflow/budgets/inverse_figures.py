@@ -81,6 +81,8 @@ def figure_of_line(chain: Chain, read: ReadLine, at_position: Floats, gain_db: F
         if read.role.port == "output":
             level = level + gain_db - (1.0 if read.role.figure == "ip1db" else 0.0)
         return level
+    if read.role.figure == "dc_w":
+        return at_position / chain.positions[read.row].count
     if read.role.figure == "antenna_gain":
         return at_position - 10.0 * math.log10(chain.positions[read.row].count)
     if read.role.figure == "amount":
@@ -99,8 +101,12 @@ def domain(chain: Chain, read: ReadLine) -> tuple[float, float]:
             return -200.0, 0.0 if lossy else 200.0
         case "source_k":
             return 0.0, 1e6
-        case "image_rejection":
+        case "image_rejection" | "rejection" | "isolation":
             return 0.0, 300.0
+        case "dc_w" | "allowed_rise":
+            return 0.0, 1e6
+        case "efficiency" | "added_efficiency":
+            return 1e-6, 100.0
         case "amount":
             unit = parse_unit(read.role.unit)
             if read.role.form is LOSS:

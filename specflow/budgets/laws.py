@@ -11,6 +11,7 @@ import numpy as np
 
 from specflow.budgets.cascade import CASCADE
 from specflow.budgets.chain import Chain
+from specflow.budgets.further import check_further
 from specflow.budgets.outputs import Output
 from specflow.budgets.sidebands import check_sidebands
 from specflow.budgets.sums import sum_output
@@ -24,7 +25,8 @@ from specflow.parameters import Dictionary
 from specflow.units import Kind, parse_unit
 
 _CASCADE_BY_NAME = {output.parameter: output for output in CASCADE}
-_SOURCES = ("antenna_gain", "source_k", "source_level", "snr")
+_INTERFERERS = ("blocker", "tones", "leaked_noise", "isolation", "allowed_rise")
+_SOURCES = ("antenna_gain", "source_k", "source_level", "snr", "dc_w", *_INTERFERERS)
 _LINE_NAMES = {
     "gain": "gain or loss",
     "noise_figure": "noise figure",
@@ -134,6 +136,7 @@ def check_complete(chain: Chain, outputs: Sequence[Output]) -> None:
         for output in outputs:
             _check_positions(chain, output)
             _check_asked(chain, output)
+            check_further(chain, output)
         _check_passive_noise(chain)
         check_sidebands(chain)
     else:
@@ -184,6 +187,10 @@ def _check_asked(chain: Chain, output: Output) -> None:
         "channel spacing": budget.channel_spacing_hz is not None,
         "antenna gain": "antenna_gain" in figures,
         "signal-to-noise ratio": "snr" in figures,
+        "DC power": bool(figures & {"dc_w", "efficiency", "added_efficiency"}),
+        "interference": bool(figures & {"blocker", "tones", "leaked_noise"}),
+        "phase noise": "phase_noise" in figures,
+        "rise allowed": "allowed_rise" in figures,
     }
     how = {
         "input level": "give the budget an input level, the first position an output_power line, or state input_level "
@@ -193,6 +200,11 @@ def _check_asked(chain: Chain, output: Output) -> None:
         "channel spacing": "give the budget the spacing of the adjacent channel",
         "antenna gain": "give the antenna a line antenna_gain",
         "signal-to-noise ratio": "give a line snr: the ratio needed, with implementation loss",
+        "DC power": "give the active positions a line dc_power, drain_efficiency or pae",
+        "interference": "give a line blocking_level (with phase_noise of a mixer), receiver_intermodulation (two "
+        "tones) or noise_density (of a transmitter)",
+        "phase noise": "give the mixer a line phase_noise at the offset of the blocker",
+        "rise allowed": "give a line desensitisation: the rise of the noise that the blocker may cause",
     }
     for what in output.asks:
         if not has[what]:

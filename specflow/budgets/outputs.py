@@ -23,7 +23,8 @@ class Output:
     state besides: "input level", "noise source", "bandwidth", "antenna gain", "signal-to-noise ratio". ``value`` is
     (...,); ``cumulative`` (positions, ...) is the same up to and including each position; ``gradient`` has the
     derivative to each figure. ``shares`` (positions, ...) sum to 1; None where a share means nothing. ``is_monotonic``:
-    each figure moves the result one way, so that its extremes lie at corners. ``words`` say the law.
+    each figure moves the result one way, so that its extremes lie at corners. ``words`` say the law. ``wants`` are
+    figures that count where they are stated.
     """
 
     parameter: str
@@ -37,3 +38,9 @@ class Output:
     asks: tuple[str, ...] = ()
     is_monotonic: bool = True
     last_gain: bool = False
+    wants: tuple[str, ...] = ()
+
+    @property
+    def takes(self) -> tuple[str, ...]:
+        """All figures that it is computed from."""
+        return (*self.needs, *self.wants)

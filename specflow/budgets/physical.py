@@ -9,13 +9,15 @@ from specflow.model.base import code_key
 from specflow.model.budget_line import BudgetLine
 from specflow.units import Converter, converter
 
+_FROM_ZERO = ("noise_figure", "source_k", "image_rejection", "rejection", "isolation", "dc_w", "allowed_rise")
+
 
 def physical_ends(
     line: BudgetLine, role: Role, convert: Converter, *, is_passive: bool
 ) -> tuple[float, float]:
     """Return the lowest and the highest value that a line can have in its own unit, ±inf where there is no end."""
     name = code_key(line.parameter)
-    if role.figure in ("noise_figure", "source_k", "image_rejection") or name in LOSSES:
+    if role.figure in _FROM_ZERO or name in LOSSES:
         return _zero(convert), math.inf
     if name == "gain" and is_passive:
         return -math.inf, _zero(convert)

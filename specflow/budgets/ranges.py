@@ -27,12 +27,12 @@ class ServedRange:
 
 def value_at(chain: Chain, output: Output, values: Sequence[Floats]) -> Floats:
     """Return a result (n,) for values of the lines."""
-    return np.broadcast_to(output.value(figures_of(chain, values, output.needs)), (chain.size,))
+    return np.broadcast_to(output.value(figures_of(chain, values, output.takes)), (chain.size,))
 
 
 def slopes_at(chain: Chain, output: Output, values: Sequence[Floats]) -> Floats:
     """Return the slopes (lines, n) of a result at values of the lines."""
-    figures = figures_of(chain, values, output.needs)
+    figures = figures_of(chain, values, output.takes)
     slopes = line_slopes(chain, values, figures, output.gradient(figures))
     return np.broadcast_to(slopes, (len(chain.lines), chain.size))
 

@@ -135,6 +135,8 @@ def _position(
 ) -> tuple[Columns, list[ReadLine]]:
     """Read the lines of one position; gains first, because the level behind it depends on them."""
     lines = reader.of(row)
+    if level is not None:  # figures are those of one element, which is fed by an equal share
+        level = level - 10.0 * np.log10(reader.budget.chain[row].count)
     if reader.budget.law is not Law.CASCADE:
         return columns, [reader.read(line, columns) for line in lines]
     mapped = [entry.target for entry in condition_map.entries] if condition_map is not None else []
@@ -245,6 +247,11 @@ def _line_notes(budget: Budget) -> list[str]:
         for line in budget.lines
         if code_key(line.parameter) == "antenna_gain" and counts[line.position] > 1
     ]
-    return arrays + [
+    driven = [
+        f"{line.place}: read at the level of one of {counts[line.position]} elements"
+        for line in budget.lines
+        if _asked(line) & {DRIVE, DRIVEN} and counts[line.position] > 1
+    ]
+    return [*arrays, *driven] + [
         f"{line.place}: growth allowance of {line.growth:g} taken off" for line in budget.lines if line.growth
     ]

@@ -42,6 +42,7 @@ _SHARED = {
     "oip2": "second-order distortion",
     "ip1db": "compression",
     "op1db": "compression",
+    "dc_power": "DC power",
 }
 
 

@@ -143,7 +143,7 @@ def _values(
 def _results(
     chain: Chain, outputs: Sequence[Output], values: Sequence[Floats], places: slice, trials: slice
 ) -> dict[str, Floats]:
-    needed = {figure for output in outputs for figure in output.needs}
+    needed = {figure for output in outputs for figure in output.takes}
     figures = figures_of(chain, values, needed, places)
     shape = (len(range(*places.indices(chain.size))), trials.stop - trials.start)
     names = {output.parameter for output in outputs}

@@ -34,6 +34,16 @@ FIGURE_TITLES = {
     "source_k": ("Source", "K"),
     "source_level": ("Source level", "dBm"),
     "snr": ("SNR needed", "dB"),
+    "dc_w": ("DC power", "W"),
+    "efficiency": ("Drain efficiency", "%"),
+    "added_efficiency": ("PAE", "%"),
+    "blocker": ("Blocker", "dBm"),
+    "tones": ("Two tones, each", "dBm"),
+    "phase_noise": ("Phase noise", "dBc/Hz"),
+    "rejection": ("Rejection", "dB"),
+    "leaked_noise": ("Transmitter noise", "dBm/Hz"),
+    "isolation": ("Isolation", "dB"),
+    "allowed_rise": ("Rise allowed", "dB"),
     "amount": ("Contribution", ""),
 }
 _FIXED = {"gain": 2, "noise_figure": 2}

@@ -15,6 +15,7 @@ from specflow.model.budget_outcome import BudgetOutcome, LineOutcome
 from specflow.model.formula_sheet import CellLook
 from specflow.reports.budget import FIGURE_TITLES, position_words, tolerance_words
 from specflow.reports.calculation_forms import taken_term
+from specflow.reports.calculation_further import dc_columns, interference_columns
 from specflow.reports.calculation_grid import Grid, Maker, Term, cell_name, plain
 from specflow.reports.calculation_image import image_columns
 
@@ -24,6 +25,8 @@ BOLTZMANN = 1.380649e-23
 T0 = 290.0
 """K, the reference temperature of noise figures."""
 _PORTS = ("iip3", "iip2", "ip1db")
+_NOT_IN_COLUMNS = ("source_level", "snr", "image_noise_figure", "blocker", "tones", "leaked_noise", "isolation",
+                   "allowed_rise")  # fmt: skip
 _LEFT = 4  # columns in front of the figures: number, block, elements, physical temperature
 
 
@@ -132,8 +135,9 @@ class ChainTable:
     def _chain(self) -> None:
         figures = [name for name in FIGURE_TITLES if name in self.outcome.figures and name != "source_k"]
         figures = [name for name in figures if name in ("gain", "noise_figure") or self._stated(name)]
-        figures = [name for name in figures if name not in ("source_level", "snr", "image_noise_figure")]
+        figures = [name for name in figures if name not in _NOT_IN_COLUMNS]
         start = self.row
+        self._top = start + 1
         columns = self._columns(figures)
         for column, (title, _) in enumerate(columns, start=_LEFT):
             self.grid.text(start, column, title, CellLook.HEADER)
@@ -167,7 +171,7 @@ class ChainTable:
             unit = unit or self.outcome.quantities[0].unit
             add(name, f"{title} [{unit}]", partial(self._figure, name))
         if "gain" in figures:
-            add("gain_sum", "∑ Gain [dB]", lambda row, _: self._sum("gain", row))
+            add("gain_sum", "∑ Gain [dB]", lambda row, _: self.sum_so_far("gain", row))
         if self.outcome.turns:
             for key, title, make in image_columns(self):
                 add(key, title, make)
@@ -182,8 +186,14 @@ class ChainTable:
                 add(f"{name}_sum", f"∑ {title} [dBm]", partial(self._port_sum, name, power))
         if self.outcome.levels is not None and "gain" in figures:
             add("level_sum", "Level behind [dBm]", lambda row, _: self._level(row))
+        if {"dc_w", "efficiency", "added_efficiency"} & set(figures):
+            for key, title, make in dc_columns(self):
+                add(key, title, make)
+        if any(self._stated(name) for name in ("blocker", "tones", "leaked_noise", "allowed_rise")):
+            for key, title, make in interference_columns(self):
+                add(key, title, make)
         if "antenna_gain" in figures:
-            add("antenna_sum", "∑ Antenna gain [dBi]", lambda row, _: self._sum("antenna_gain", row))
+            add("antenna_sum", "∑ Antenna gain [dBi]", lambda row, _: self.sum_so_far("antenna_gain", row))
         if "amount" in figures:
             add("amount_sum", f"∑ [{self.outcome.quantities[0].unit}]", lambda row, _: self._amount_sum(row))
         return columns
@@ -206,6 +216,8 @@ class ChainTable:
             terms = [self._of_elements(one, term, count) for (one, _), term in zip(lines, terms, strict=True)]
         if figure == "antenna_gain" and count.value > 1:
             terms.append(Term(f"10*LOG10({count.text})", 10.0 * math.log10(count.value)))
+        if figure == "dc_w":
+            return Term(f"{terms[0].text}*{count.text}", terms[0].value * count.value)
         return Term("+".join(term.text for term in terms), math.fsum(term.value for term in terms))
 
     def _of_elements(self, one: LineOutcome, term: Term, count: Term) -> Term:
@@ -248,13 +260,11 @@ class ChainTable:
     def _range(self, key: str, row: int, *, own: Term | None = None) -> str:
         """Return the cells of a column from the first position to this one; empty cells count as nothing."""
         column = _LEFT + self._kept.index(key)
-        top = self._top()
+        top = self._top
         return f"{cell_name(top, column, fixed=True)}:{cell_name(top + row, column, fixed=True)}"
 
-    def _top(self) -> int:
-        return self.row + 1
-
-    def _sum(self, key: str, row: int) -> Term:
+    def sum_so_far(self, key: str, row: int) -> Term:
+        """Return the sum of a column up to a position."""
         return Term(f"SUM({self._range(key, row)})", math.fsum(term.value for term in self._known(key, row)))
 
     def _before(self, row: int) -> Term:
@@ -301,10 +311,11 @@ class ChainTable:
     # Level, sums
 
     def _level(self, row: int) -> Term:
-        start, gain = self._start(), self.own("gain_sum", row)
+        start, gain = self.start(), self.own("gain_sum", row)
         return Term(f"{start.text}+{gain.text}", start.value + gain.value)
 
-    def _start(self) -> Term:
+    def start(self) -> Term:
+        """Return the level at the input."""
         if "level" in self.fixed:
             return self.fixed["level"]
         one, stated = next((one, term) for one, term in self.lines if one.figure == "source_level")

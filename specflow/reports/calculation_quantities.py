@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 
 from specflow.reports.calculation_chain import BOLTZMANN, T0, ChainTable
+from specflow.reports.calculation_further import blocking_term, desense_term, efficiency_term
 from specflow.reports.calculation_grid import Term
 
 
@@ -50,6 +51,14 @@ def quantity_term(chain: ChainTable, parameter: str, row: int) -> Term | None:
             return Term(f"2/3*({free.text})", 2.0 / 3.0 * free.value)
         case "aclr":
             return _leakage(chain, row)
+        case "dc_power":
+            return chain.own("dc_sum", row)
+        case "total_efficiency" | "pae":
+            return efficiency_term(chain, row, is_added=parameter == "pae")
+        case "desensitisation":
+            return desense_term(chain, row, _floor(chain, row))
+        case "blocking_level":
+            return blocking_term(chain, row, _floor(chain, row))
     return None
 
 

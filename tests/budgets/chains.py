@@ -47,7 +47,17 @@ def a_chain(*stages: dict[str, Any], parameter: str = "noise_figure", **fields: 
 
 def unit_of(parameter: str) -> str:
     """Return the unit in which the tests state a parameter."""
-    if parameter in ("iip3", "oip3", "iip2", "oip2", "ip1db", "op1db", "output_power"):
+    units = {
+        "dc_power": "W",
+        "drain_efficiency": "%",
+        "pae": "%",
+        "phase_noise": "dBc/Hz",
+        "noise_density": "dBm/Hz",
+    }
+    if parameter in units:
+        return units[parameter]
+    levels = ("iip3", "oip3", "iip2", "oip2", "ip1db", "op1db", "output_power")
+    if parameter in levels or parameter in ("blocking_level", "receiver_intermodulation"):
         return "dBm"
     if parameter in ("noise_temperature", "antenna_noise_temperature"):
         return "K"
