@@ -35,7 +35,7 @@ def edges_about_peak(along: Floats, values: Floats, level: float) -> Edges:
     peak = int(np.argmax(values))
     if values[peak] < level:
         raise CalculationError(
-            f"no reading reaches {figure(level)}; the greatest is {format_value(values[peak])}"
+            f"no reading reaches {figure(level)}; the greatest is {figure(float(values[peak]))}"
         )
     above = values >= level
     left = np.flatnonzero(~above[:peak])

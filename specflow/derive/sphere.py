@@ -27,7 +27,7 @@ Rows = NDArray[np.intp]
 _EVEN = (
     0.05  # how far the mean direction and the second moments of an even grid may be from those of the sphere
 )
-_HOLE = 2.2  # how many mean spacings the farthest place may lie from the nearest reading
+_HOLE = 1.25  # how many mean spacings the farthest place may lie from the nearest reading
 
 
 @dataclass(frozen=True, slots=True)
