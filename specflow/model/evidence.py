@@ -22,6 +22,7 @@ from specflow.model.derivation import Covered
 from specflow.model.origin import Origin
 from specflow.model.parameter import QuantityIdentity
 from specflow.model.requirement import Method, Stage
+from specflow.model.source_statement import PeakList, StatedColumn
 
 
 class FileKind(StrEnum):
@@ -120,6 +121,7 @@ class EvidenceTable(Document):
     A derived table (``derivation``) keeps the file of its input, its rows point to the raw rows that govern, and
     ``covers`` says over which ranges its values were taken. ``turned``: the table lies on its side in its sheet, so that
     ``source_rows`` count columns of the sheet and ``ValueColumn.column`` its rows (``cell`` gives the true place).
+    ``stated`` are columns of limits and verdicts of the source; ``peaks`` says that the table is a list of peaks.
     """
 
     id: Code
@@ -156,6 +158,8 @@ class EvidenceTable(Document):
     how_read: HowRead = Field(default_factory=HowRead)
     derivation: Code | None = None
     covers: tuple[Covered, ...] = ()
+    stated: tuple[StatedColumn, ...] = ()
+    peaks: PeakList | None = None
     revision: int = 1
 
     def cell(self, row: int, column: int) -> tuple[int, int]:

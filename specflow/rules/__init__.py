@@ -26,6 +26,7 @@ from specflow.rules import (
     limits,
     project,
     requirements,
+    sources,
     verdicts,
     waivers,
 )
@@ -85,6 +86,9 @@ RULES: tuple[Rule, ...] = (
     Rule.of(evidence.polarisation_mismatch, "requirement", _WARNING),
     Rule.of(evidence.conditions_mismatch, "requirement", _WARNING),
     Rule.of(evidence.wrong_requirement_named, "requirement", _WARNING),
+    Rule.of(sources.stated_verdict_differs, "requirement", _WARNING),
+    Rule.of(sources.stated_limit_differs, "requirement", _WARNING),
+    Rule.of(sources.values_without_meaning, "requirement", _WARNING),
     Rule.of(evidence.unmatched_evidence, "evidence_table", _WARNING),
     Rule.of(evidence.ambiguous_evidence, "requirement", _WARNING),
     Rule.of(evidence.left_out_cells, "evidence_table", _WARNING),

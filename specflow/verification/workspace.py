@@ -37,6 +37,7 @@ from specflow.verification.changed import changes_below
 from specflow.verification.comparable import IDENTITY, Fit, Wanted, fit
 from specflow.verification.limit_inputs import is_plain
 from specflow.verification.map_choice import MapChoice
+from specflow.verification.peak_lists import scanned
 from specflow.verification.records import Held, Records, Source, gather, no_records
 from specflow.verification.residuals import Residuals
 from specflow.verification.stacking import speaking, stack
@@ -131,12 +132,14 @@ class Workspace:
         return self._columns[table]
 
     def _load(self, tables: Sequence[str]) -> None:
-        """Load arrays; rows of a table derived over a range speak for that range."""
+        """Load arrays; rows of a table derived over a range speak for that range, floors of a list for their scans."""
         loaded = dict(self.snapshot.load_columns(tables))
         for code in tables:
             table = self.snapshot.find(EvidenceTable, code)
             if table is not None and table.covers:
                 loaded[code] = speaking(table.covers, loaded[code])
+            if table is not None and table.peaks is not None:
+                loaded[code] = scanned(table.peaks, loaded[code])
         self._columns.update(loaded)
 
     def item(self, name: str) -> Item | None:

@@ -53,7 +53,10 @@ _PLAIN: Mapping[str, tuple[type[Document], Callable[[Fields], Fields]]] = {
     "budgets": (Budget, lambda row: {"law": "cascade"}),
     "changes": (ItemChange, lambda row: {"description": "changed"}),
     "supersessions": (Supersession, lambda row: {"id": f"{row['earlier']}/{row['later']}"}),
-    "derivations": (Derivation, lambda row: {"digests": [""] * len(row["inputs"]), "law": "worst", "unit": "dB"}),
+    "derivations": (
+        Derivation,
+        lambda row: {"digests": [""] * len(row["inputs"]), "law": "worst", "unit": "dB"},
+    ),
     "withdrawals": (Withdrawal, lambda row: {"id": f"{row['table']}/out"}),
     "nonconformances": (Nonconformance, lambda row: {"description": "misses its limit"}),
     "waivers": (Waiver, lambda row: {"reason": "invented"}),
@@ -165,19 +168,26 @@ def _table(row: Fields, dictionary: Dictionary) -> DescribedTable:
     size = len(cells[0])
     conditions = {one: find_dimension(_split(one)[0]) for one in headers}
     values = [one for one in headers if dictionary.get(_split(one)[0]) is not None and one != "U"]
-    stray = [one for one in headers if one not in ("item", "date", "U", *values) and conditions[one] is None]
+    beside = [one["name"] for one in row.get("stated", ())]
+    known = ("item", "date", "U", *values, *beside)
+    stray = [one for one in headers if one not in known and conditions[one] is None]
     if stray:
         raise ValueError(f"{row['table']}: {stray} are no parameters and no conditions")
     arrays = {one: _arrays(named[one], named.get("U")) for one in values}
     items = named.get("item", [row.get("item", "")] * size)
     dates = TextColumn.of(named["date"]) if "date" in named else None
-    spoken = {one: known.name for one, known in conditions.items() if known is not None and one not in values}
+    spoken = {
+        one: dimension.name
+        for one, dimension in conditions.items()
+        if dimension is not None and one not in (*values, *beside)
+    }
     columns = EvidenceColumns(
         _condition_columns(spoken, named, size),
         {_split(one)[0]: arrays[one] for one in values},
         np.arange(2, size + 2, dtype=np.int32),
         TextColumn.of(items),
         dates,
+        {name: TextColumn.of(named[name]) for name in beside},
     )
     file = EvidenceFile(
         id=f"F-{row['table']}",

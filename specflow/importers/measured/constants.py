@@ -10,6 +10,7 @@ from specflow.importers.measured.names import name_of
 from specflow.importers.measured.rejects import cell_text
 from specflow.importers.measured.result import Role
 from specflow.importers.measured.roles import role_of_words, uncertainty_of
+from specflow.importers.measured.spectrum_words import bandwidth_in, speaks_of_kinds
 from specflow.importers.measured.stated import Said, Stated
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.readers import is_blank, looks_numeric
@@ -36,6 +37,16 @@ _OF_THE_TABLE = frozenset(
 _MAY_VARY = frozenset(("performer", "operator", "hardware"))
 
 
+def mapping_settles(mapping: LayoutMapping, header: str, letter: str) -> bool:
+    """Whether a mapping says what a column is."""
+    mapped = mapping.column(header, letter)
+    return mapped is not None and bool(mapped.role or mapped.parameter or mapped.dimension)
+
+
+def _are_bandwidths(words: set[str], unit: str) -> bool:
+    return all(bandwidth_in(word, unit) is not None for word in words)
+
+
 @dataclass(frozen=True, slots=True)
 class ConstantColumn:
     """A column that speaks of the whole table; ``problem`` when its rows disagree."""
@@ -51,19 +62,20 @@ def read_constants(table: FoundTable, mapping: LayoutMapping, stated: Stated) ->
     for header in table.headers:
         parts = read_header(header.text)
         name = name_of(parts.name)
+        cells = table.cells(header.column).at(table.rows)
+        if speaks_of_kinds(parts.name, cells) and not mapping_settles(mapping, header.text, header.letter):
+            found[header.column] = ConstantColumn(Role.SPECTRUM, "it says line or noise of each row")
+            continue
         if name not in _OF_THE_TABLE or role_of_words(parts) or uncertainty_of(parts):
             continue
-        mapped = mapping.column(header.text, header.letter)
-        if mapped is not None and (mapped.role or mapped.parameter or mapped.dimension):
+        if mapping_settles(mapping, header.text, header.letter):
             continue
-        words = {
-            cell_text(value).strip()
-            for value in table.cells(header.column).at(table.rows)
-            if not is_blank(value)
-        }
+        words = {cell_text(value).strip() for value in cells if not is_blank(value)}
         role = Role.BANDWIDTH if name == "bandwidth" else Role.REMARK
         if len(words) > 1 and name in _MAY_VARY:
             found[header.column] = ConstantColumn(role, f"the {name} of each row; kept as a remark")
+        elif len(words) > 1 and role is Role.BANDWIDTH and _are_bandwidths(words, parts.unit or header.unit):
+            found[header.column] = ConstantColumn(role, "the bandwidth of each row")
         elif len(words) > 1:
             problem = f"says more than one {name.replace('_', ' ')}: {', '.join(sorted(words)[:4])}"
             found[header.column] = ConstantColumn(role, "", problem)

@@ -14,15 +14,21 @@ from pydantic import ValidationError
 from specflow.exchange import digest
 from specflow.importers.measured.rejects import cell_text
 from specflow.importers.measured.result import Role
+from specflow.importers.measured.source_says import stated_columns
 from specflow.importers.measured.work import TableWork
 from specflow.model.block import Block
 from specflow.model.evidence import ConditionColumn, EvidenceColumns, EvidenceTable, ValueColumn
 from specflow.model.requirement import Method, Requirement, Stage
+from specflow.model.source_statement import PeakList
 
 PROVISIONAL_TABLE, PROVISIONAL_FILE = "EV-0", "F-0"
 
 _NOT_CONTENT = {"id", "file", "digest", "mapping", "mapping_revision", "accepted_by", "accepted_at", "provisional",
                 "revision", "left_out", "title", "sheet", "turned", "how_read", "derivation", "covers"}  # fmt: skip
+
+
+#: Content only where a table has it, so that tables without it keep their digests.
+_WHERE_SAID = {"stated", "peaks"}
 
 
 @dataclass(frozen=True, slots=True)
@@ -43,6 +49,7 @@ def make_document(
     values: Sequence[ValueColumn],
     conditions: Sequence[ConditionColumn],
     columns: EvidenceColumns,
+    peaks: PeakList | None = None,
 ) -> EvidenceTable | None:
     """Return the document of a table with provisional ids; None, and a question, when something stated does not fit."""
     stated = work.stated
@@ -73,6 +80,8 @@ def make_document(
             simulation_validated=stated.text("validated"),
             hardware_note=stated.text("hardware"),
             left_out=work.rejects.left_out(),
+            stated=stated_columns(work),
+            peaks=peaks,
         )
     except ValidationError as error:
         fault = error.errors()[0]
@@ -85,6 +94,7 @@ def make_document(
 def content_digest(table: EvidenceTable, columns: EvidenceColumns) -> str:
     """Return the digest of what a table says: values, uncertainties, conditions, items, and what they mean."""
     told = table.model_dump(mode="json", exclude=_NOT_CONTENT)
+    told = {name: value for name, value in told.items() if value or name not in _WHERE_SAID}
     words = [text for _, text in sorted(columns.conditions.text.items())]
     told["labels"] = [columns.items.labels, *(text.labels for text in words)]
     if columns.dates is not None:

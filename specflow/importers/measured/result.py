@@ -21,6 +21,7 @@ class Role(StrEnum):
     DATE = "date"
     REQUIREMENT = "requirement"
     BANDWIDTH = "bandwidth"
+    SPECTRUM = "spectrum kind"
     STATED_LIMIT = "stated limit"
     STATED_VERDICT = "stated verdict"
     INDEX = "index"

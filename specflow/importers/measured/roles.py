@@ -21,6 +21,7 @@ _NAMES: dict[Role, tuple[str, ...]] = {
     Role.INDEX: (
         "# | no | no. | nr | nr. | run | run no | run # | index | idx | row | point | pt | point no | meas no",
         "measurement no | seq | sequence | line | record | record no | test no | meas # | test # | step | page",
+        "peak # | peak no | peak number | spur # | spur no | marker #",
     ),
     Role.STATED_VERDICT: (
         "pass/fail | pass / fail | p/f | verdict | result | pass | fail | ok | ok? | status | compliant",
@@ -66,8 +67,9 @@ class UncertaintyWords:
 
 def role_of_words(parts: HeaderText) -> tuple[Role, str] | None:
     """Return the role that the header's words say and the reason; None when they say none."""
-    role = _ROLES.get(_plain(parts.name)) or _ROLES.get(_plain(parts.text))
-    if role is not None and not parts.unit:
+    whole = _ROLES.get(_plain(parts.text))  # P/F is a verdict, not a P in farads
+    role = whole or _ROLES.get(_plain(parts.name))
+    if role is not None and (whole is not None or not parts.unit):
         return role, f"the header {parts.text!r} names a column of this kind"
     if role is Role.STATED_VERDICT:
         return None

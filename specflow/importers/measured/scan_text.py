@@ -42,7 +42,9 @@ def _said(text: str) -> SaidScan:
     high = parse_quantity(found["high"])
     low_text = found["low"] if not re.fullmatch(r"[\d.,\s]+", found["low"]) else f"{found['low']} {high.unit}"
     floor = re.search(r"floor\s*[:=]?\s*(?P<floor>[^,;]+)", more, re.IGNORECASE)
-    bandwidth = re.search(r"(?:RBW|resolution bandwidth|bandwidth)\s*[:=]?\s*(?P<rbw>[^,;]+)", more, re.IGNORECASE)
+    bandwidth = re.search(
+        r"(?:RBW|resolution bandwidth|bandwidth)\s*[:=]?\s*(?P<rbw>[^,;]+)", more, re.IGNORECASE
+    )
     return SaidScan(
         parse_quantity(low_text),
         high,
@@ -54,7 +56,9 @@ def _said(text: str) -> SaidScan:
 def _scan(said: SaidScan, floor: str, bandwidth: str) -> PeakScan:
     low, high = (_hertz(end) for end in (said.low, said.high))
     if not low < high:
-        raise UnitError(f"the scan from {low:g} to {high:g} Hz runs downwards", hint="write the lower end first")
+        raise UnitError(
+            f"the scan from {low:g} to {high:g} Hz runs downwards", hint="write the lower end first"
+        )
     floor_text, rbw = said.floor or floor, said.bandwidth or bandwidth
     level = parse_quantity(floor_text.lstrip("<≤ ")) if floor_text else None
     return PeakScan(

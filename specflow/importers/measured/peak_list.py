@@ -1,0 +1,205 @@
+"""Lists of peaks, as spurious searches give them: told from traces, with the ranges that were scanned and their floors.
+
+The floor of each scan becomes a row of its own ("less than the floor", in the bandwidth of the scan), for every item and
+setting that the list has. What hides under a floor may be noise, which scales with bandwidth, or a line, which does
+not: its spectrum is unknown. A list that does not say what was scanned, or down to which floor, is kept
+all the same: it can fail a limit and proves none, and that is said.
+"""
+
+from __future__ import annotations
+
+import re
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specflow.errors import UnitError
+from specflow.importers.measured.cell_units import brought, to_unit
+from specflow.importers.measured.result import Role
+from specflow.importers.measured.scan_text import read_scans
+from specflow.importers.measured.work import TableWork
+from specflow.model.columns import UNSTATED, Columns, TextColumn
+from specflow.model.evidence import EvidenceColumns, SpectrumKind, ValueArrays, ValueColumn
+from specflow.model.source_statement import LIST_COLUMN, PEAK, PeakList, PeakScan
+from specflow.units import parse_unit
+
+AXIS = "frequency"
+_LIST = re.compile(
+    r"\b(?:peak|spur\w*|emission)s?\s+(?:list|table|search)\b|\blist of (?:peaks|spur\w*)\b", re.IGNORECASE
+)
+_PROVES_NOTHING = "it can fail a limit and proves none"
+
+
+def is_peak_list(work: TableWork, title: str) -> bool:
+    """Whether a table lists peaks: by a person's or a mapping's word, by a scan stated above it, or by its title."""
+    said = work.stated.text("list").casefold()
+    if said or work.stated.text("scanned") or work.stated.text("scan_start"):
+        return said not in ("no", "trace", "none")
+    headers = {re.sub(r"[\s_#.]+", "", one.header.text.casefold()) for one in work.of(Role.INDEX)}
+    return bool(
+        _LIST.search(title)
+        or _LIST.search(work.table.grid.name)
+        or headers & {"peak", "peakno", "spur", "spurno"}
+    )
+
+
+def read_peak_list(work: TableWork, title: str) -> PeakList | None:
+    """Return what was scanned for a list of peaks; None for any other table. What cannot be read is asked."""
+    if not is_peak_list(work, title):
+        return None
+    stated = work.stated
+    text = stated.text("scanned")
+    if not text and stated.text("scan_start") and stated.text("scan_stop"):
+        text = f"{stated.text('scan_start')} to {stated.text('scan_stop')}"
+    if not text:
+        remedy = '--state scanned="30 MHz to 1 GHz" --state floor="-85 dBm" says them'
+        work.notes.append(f"a list of peaks that does not say what was scanned: {_PROVES_NOTHING}; {remedy}")
+        return PeakList()
+    try:
+        scans = read_scans(text, stated.text("floor"), stated.text("bandwidth"))
+    except UnitError as error:
+        work.ask("scanned", "", error.message, error.hint or 'say --state scanned="30 MHz to 1 GHz"')
+        return PeakList()
+    if any(scan.floor is None for scan in scans):
+        work.notes.append(f'a scan without its floor: {_PROVES_NOTHING}; --state floor="-85 dBm" says it')
+    return PeakList(scans=scans)
+
+
+@dataclass(frozen=True, slots=True)
+class WithFloors:
+    """A list of peaks with the rows of its floors; ``values`` may have a column more than before."""
+
+    columns: EvidenceColumns
+    values: list[ValueColumn]
+
+
+def with_floors(
+    work: TableWork, peaks: PeakList, columns: EvidenceColumns, values: list[ValueColumn]
+) -> WithFloors:
+    """Add the floor rows to a list; a floor that cannot be held against the levels is asked about."""
+    kinds = {(one.quantity.parameter, one.quantity.plane, one.quantity.statistic, one.unit) for one in values}
+    floors = [(number, scan) for number, scan in enumerate(peaks.scans, 1) if scan.floor is not None]
+    words = TextColumn(np.zeros(columns.conditions.size, np.int32), (PEAK,))
+    marked = replace(columns, extra={**columns.extra, LIST_COLUMN: words})
+    if not floors:
+        return WithFloors(marked, values)
+    if len(kinds) > 1:
+        remedy = 'mark the others role = "not read", or attach them by themselves'
+        work.ask("floor", "", "a floor is stated, and the list has values of several quantities", remedy)
+        return WithFloors(marked, values)
+    for number, scan in floors:
+        found = _with_floor(work, number, scan, marked, values)
+        marked, values = found.columns, found.values
+    return WithFloors(marked, values)
+
+
+def _with_floor(
+    work: TableWork, number: int, scan: PeakScan, columns: EvidenceColumns, values: list[ValueColumn]
+) -> WithFloors:
+    unit, written = parse_unit(values[0].unit), parse_unit(scan.floor_unit or "1")
+    if scan.floor is None or not brought(written, unit):
+        work.ask("floor", "", f"a floor in {written} under levels in {unit}", f"state the floor in {unit}")
+        return WithFloors(columns, values)
+    floor = to_unit(scan.floor, written, unit)
+    value, values = _column_of_floor(scan, values)
+    rows = _settings(columns)
+    added = len(rows)
+    arrays = {name: _longer(one, added) for name, one in columns.values.items()}
+    arrays[value.name] = _floored(arrays.get(value.name), columns, values, floor, added)
+    low_source = np.full(added, _row_of(work), np.int32)
+    label = TextColumn(np.zeros(added, np.int32), (str(number),))
+    extra = {
+        name: _joined(words, words.take(rows) if name != LIST_COLUMN else label)
+        for name, words in columns.extra.items()
+    }
+    grown = EvidenceColumns(
+        _conditions(columns.conditions, rows),
+        arrays,
+        np.concatenate([columns.source_rows, low_source]).astype(np.int32),
+        _joined(columns.items, columns.items.take(rows)),
+        None if columns.dates is None else _joined(columns.dates, columns.dates.take(rows)),
+        extra,
+    )
+    return WithFloors(grown, values)
+
+
+def _column_of_floor(scan: PeakScan, values: list[ValueColumn]) -> tuple[ValueColumn, list[ValueColumn]]:
+    """The value column that a floor stands in: of unknown spectrum, in the bandwidth of the scan."""
+    first = values[0]
+    bandwidth = scan.bandwidth_hz or first.quantity.bandwidth_hz
+    for one in values:
+        if one.spectrum is SpectrumKind.UNKNOWN and one.quantity.bandwidth_hz == bandwidth:
+            return one, values
+    name = f"{first.header or first.name}, floor" + (f" in {bandwidth:g} Hz" if bandwidth else "")
+    quantity = first.quantity.model_copy(update={"bandwidth_hz": bandwidth})
+    update = {"name": name, "quantity": quantity, "spectrum": SpectrumKind.UNKNOWN}
+    made = first.model_copy(update=update)
+    return made, [*values, made]
+
+
+def _settings(columns: EvidenceColumns) -> NDArray[np.intp]:
+    """One row of every item at every setting but frequency: the scan was made for each."""
+    peaks = np.flatnonzero(columns.extra[LIST_COLUMN].codes == 0)
+    keys = [columns.items.codes, *(words.codes for words in columns.conditions.text.values())]
+    keys += [
+        np.nan_to_num(one, nan=-np.inf) for name, one in columns.conditions.numeric.items() if name != AXIS
+    ]
+    table = np.stack([np.asarray(key, np.float64)[peaks] for key in keys], axis=1)
+    _, first = np.unique(table, axis=0, return_index=True)
+    return np.asarray(peaks[np.sort(first)], np.intp)
+
+
+def _floored(
+    before: ValueArrays | None, columns: EvidenceColumns, values: list[ValueColumn], floor: float, added: int
+) -> ValueArrays:
+    """The arrays of the floor's column: less than the floor in the new rows, with the greatest u of the levels."""
+    size = columns.conditions.size
+    if before is None:
+        nothing = np.full(size + added, np.nan)
+        before = ValueArrays(nothing, nothing)
+    low, high = before.low.copy(), before.high.copy()
+    low[size:], high[size:] = -np.inf, floor
+    known = [one.u[~np.isnan(one.u)] for one in columns.values.values() if one.u is not None]
+    greatest = max((float(one.max()) for one in known if len(one)), default=None)
+    if greatest is None:
+        return ValueArrays(low, high, before.u)
+    u = np.full(size + added, np.nan) if before.u is None else before.u.copy()
+    u[size:] = greatest
+    return ValueArrays(low, high, u)
+
+
+def _longer(one: ValueArrays, added: int) -> ValueArrays:
+    more = np.full(added, np.nan)
+    low = np.concatenate([one.low, more])
+    high = low if one.high is one.low else np.concatenate([one.high, more])
+    return ValueArrays(low, high, None if one.u is None else np.concatenate([one.u, more]))
+
+
+def _conditions(before: Columns, rows: NDArray[np.intp]) -> Columns:
+    numeric = {
+        name: np.concatenate([one, np.full(len(rows), np.nan) if name == AXIS else one[rows]])
+        for name, one in before.numeric.items()
+    }
+    text = {name: _joined(one, one.take(rows)) for name, one in before.text.items()}
+    return Columns(before.size + len(rows), numeric, text, before.units)
+
+
+def _joined(first: TextColumn, second: TextColumn) -> TextColumn:
+    labels = {label: code for code, label in enumerate(first.labels)}
+    codes = [
+        UNSTATED if code == UNSTATED else labels.setdefault(second.labels[code], len(labels))
+        for code in second.codes.tolist()
+    ]
+    return TextColumn(
+        np.concatenate([first.codes, np.array(codes, np.int32)]).astype(np.int32), tuple(labels)
+    )
+
+
+def _row_of(work: TableWork) -> int:
+    """The row of the sheet in which the scan or its floor is stated; the header row where it is stated elsewhere."""
+    for name in ("floor", "scanned", "scan_start"):
+        found = re.search(r"stated in [A-Z]+(\d+)$", work.stated.by(name))
+        if found:
+            return int(found[1])
+    return work.table.header_row

@@ -1,0 +1,198 @@
+"""Rules about what sources say themselves: their limits and their verdicts, held beside ours."""
+
+from __future__ import annotations
+
+import math
+import re
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass, field
+
+from specflow.errors import UnitError
+from specflow.model.evidence import EvidenceTable
+from specflow.model.requirement import Requirement
+from specflow.model.source_statement import StatedColumn
+from specflow.model.verdict import PointResults, RecordRef, Verdict
+from specflow.rules.base import Found
+from specflow.rules.facts import FAILS, Facts
+from specflow.rules.words import at_point, counted
+from specflow.units import converter, parse_reading, parse_unit
+
+_PASSED = (
+    "pass",
+    "passed",
+    "p",
+    "ok",
+    "true",
+    "yes",
+    "y",
+    "compliant",
+    "c",
+    "go",
+    "conform",
+    "conforms",
+    "met",
+)
+_FAILED = (
+    "fail",
+    "failed",
+    "f",
+    "nok",
+    "ng",
+    "false",
+    "no",
+    "n",
+    "noncompliant",
+    "nc",
+    "nogo",
+    "notok",
+    "notmet",
+)
+_CLOSE = 1e-9
+_MOST_POINTS = 20_000
+
+
+@dataclass(slots=True)
+class Told:
+    """Governing readings of one requirement at which a source and we differ: the first, and how many."""
+
+    first: RecordRef
+    point: int
+    words: str
+    count: int = 0
+    tables: dict[str, None] = field(default_factory=dict)
+
+
+def stated_verdict_differs(facts: Facts) -> Iterator[Found]:
+    """A source calls a reading passed or failed, and we find the opposite.
+
+    Why: either its limit is another one than ours, or one of the two was read wrongly.
+    Fails: the sheet says PASS beside 19.2 dB, the requirement is at least 20 dB.
+    Passes: the sheet and we come to the same verdict for every governing reading.
+    Do: compare the limit of the source with the requirement; correct the one that is wrong.
+    """
+    for requirement, told in _compared(facts, "verdict"):
+        message = f"{told.words}{_more(told)}"
+        yield Found(requirement.id, message, origin=facts.origin(told.first), related=tuple(told.tables))
+
+
+def stated_limit_differs(facts: Facts) -> Iterator[Found]:
+    """A source states another limit than the requirement has.
+
+    Why: what was tested against is not what was promised, or the promise has moved since.
+    Fails: the sheet judges against 19 dB, the requirement is at least 20 dB.
+    Passes: the limit beside the reading is that of the requirement, in whatever unit.
+    Do: find out which of the two is in force; correct the requirement, or have the source mended.
+    """
+    for requirement, told in _compared(facts, "limit"):
+        message = f"{told.words}{_more(told)}"
+        yield Found(requirement.id, message, origin=facts.origin(told.first), related=tuple(told.tables))
+
+
+def values_without_meaning(facts: Facts) -> Iterator[Found]:
+    """Readings have no meaning in the unit of the limit, and were not judged.
+
+    Why: what is not judged neither proves nor fails, and may be the reading that fails.
+    Fails: an output power of -0.1 W under a limit in dBm.
+    Passes: every reading has a value in the unit of the limit.
+    Do: look at these cells in the source; have them mended, and attach the file again.
+    """
+    for requirement, status in facts.judged:
+        for mismatch in status.mismatches:
+            table = facts.table(mismatch.table)
+            if mismatch.kind == "value" and table is not None:
+                message = f"{mismatch.column} of {table.id}: {mismatch.what}"
+                yield Found(requirement.id, message, origin=facts.place(table), related=(table.id,))
+
+
+def _compared(facts: Facts, kind: str) -> Iterator[tuple[Requirement, Told]]:
+    """Yield the requirements of which governing readings differ from what stands beside them in their source."""
+    for requirement, status in facts.judged:
+        told: Told | None = None
+        for activity in status.activities:
+            for results in activity.items.values():
+                for point, table, column in _stated(facts, results, kind):
+                    words = _differs(facts, requirement, results, point, table, column)
+                    record = facts.governing(results, point) if words else None
+                    if record is None:
+                        continue
+                    where = at_point(facts.point(requirement, point), results.item)
+                    told = told or Told(record, point, f"{words}{where}")
+                    told.count += 1
+                    told.tables[record.table] = None
+        if told is not None:
+            yield requirement, told
+
+
+def _stated(
+    facts: Facts, results: PointResults, kind: str
+) -> Iterator[tuple[int, EvidenceTable, StatedColumn]]:
+    """Yield the points whose governing table has such a column for the value that governs."""
+    tables = [facts.table(name) for name in results.tables]
+    columns = [
+        () if one is None else tuple(said for said in one.stated if said.kind == kind) for one in tables
+    ]
+    if not any(columns):
+        return
+    places, values = results.table.tolist(), results.column.tolist()
+    for point, place in enumerate(places[:_MOST_POINTS]):
+        table = tables[place] if place >= 0 else None
+        if table is None:
+            continue
+        name = table.values[values[point]].name
+        for said in columns[place]:
+            if name == said.of or name.startswith(f"{said.of} (") or (not said.of and len(table.values) == 1):
+                yield point, table, said
+
+
+def _differs(
+    facts: Facts,
+    requirement: Requirement,
+    results: PointResults,
+    point: int,
+    table: EvidenceTable,
+    said: StatedColumn,
+) -> str:
+    """What the source says otherwise than we do; "" where it says the same, or nothing that can be read."""
+    words = facts.columns(table.id).extra.get(said.name)
+    text = "" if words is None else words.word(int(results.row[point]))
+    if said.kind == "verdict":
+        return _other_verdict(text, Verdict(int(results.verdict[point])))
+    unit = requirement.limit.unit
+    ends = {"lower": float(results.lower[point]), "upper": float(results.upper[point])}
+    return _other_limit(text, said, unit, ends)
+
+
+def _other_verdict(text: str, ours: Verdict) -> str:
+    plain = re.sub(r"[\s\-_]+", "", text.casefold())
+    if plain in _PASSED and ours in FAILS:
+        return f"the source says {text!r}, we find a fail"
+    if plain in _FAILED and ours in (Verdict.PASS, Verdict.CONDITIONAL_PASS):
+        return f"the source says {text!r}, we find a pass"
+    return ""
+
+
+def _other_limit(text: str, said: StatedColumn, unit: str, ends: Mapping[str, float]) -> str:
+    """Compare a limit as written with ours; a side that is not said may be either of them."""
+    try:
+        reading = parse_reading(text.lstrip("<>≤≥= "))
+        step = converter(parse_unit(said.unit or unit or "1"), parse_unit(unit or "1"))
+        stated = float(step(getattr(reading, "lo", math.nan)))
+    except UnitError:
+        return ""
+    sides = [said.side] if said.side else ["lower", "upper"]
+    ours = [ends[side] for side in sides if math.isfinite(ends[side])]
+    if not math.isfinite(stated) or any(abs(stated - one) <= _CLOSE * max(1.0, abs(one)) for one in ours):
+        return ""
+    side = {"lower": "a lower limit", "upper": "an upper limit"}.get(said.side, "a limit")
+    mine = " and ".join(_exactly(one, unit) for one in ours) or "no such limit"
+    return f"the source states {side} of {_exactly(stated, unit)}, the requirement has {mine}"
+
+
+def _exactly(value: float, unit: str) -> str:
+    """A limit with all its digits: rounded, two that differ may look the same."""
+    return f"{value:.10g} {unit}".strip()
+
+
+def _more(told: Told) -> str:
+    others = told.count - 1
+    return f" (and {counted(others, 'other point')})" if others else ""
