@@ -17,8 +17,8 @@ from specflow.importers.measured.context import Context
 from specflow.importers.measured.facts import Fact, read_preamble
 from specflow.importers.measured.header_cells import HeaderCell
 from specflow.importers.measured.header_text import header_key, known_unit
+from specflow.importers.measured.names import name_of
 from specflow.importers.measured.placed import headerless
-from specflow.importers.measured.result import Question
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.readers import CellRange, Grid, Value, is_blank, looks_numeric
 from specflow.units import parse_quantity
@@ -47,6 +47,12 @@ def find_block(grid: Grid, top: int, stop: int) -> int | None:
     return None
 
 
+def end_before_more(grid: Grid, block: int) -> int:
+    """The last row of a block where words and another block follow; else the last row of the grid."""
+    last = _last_row(grid, block, _number_columns(grid, block)[0])
+    return last if find_block(grid, last + 1, grid.last_row + 1) is not None else grid.last_row
+
+
 def is_far_from(grid: Grid, header: int, block: int) -> bool:
     """Whether a header row does not belong to a block of numbers: between them words stand over its first column."""
     column = _number_columns(grid, block)[0]
@@ -68,7 +74,7 @@ def block_table(grid: Grid, top: int, block: int, context: Context) -> FoundTabl
     cells = grid.cut(area)
     table = headerless(cells, top, block, context.recognises)
     facts = read_preamble(grid, _section_row(grid, top, block), block).facts
-    headers = _named(table, facts, _units_above(grid, block, facts, columns), columns)
+    headers = _named(table, facts, _units_above(grid, block), columns)
     words = _words_above(grid, top, block)
     table = replace(table, grid=cells, headers=headers, top=block, words_above=words, has_words=bool(words))
     return replace(table, facts=section_facts(grid, top, block))
@@ -87,8 +93,6 @@ def section_facts(grid: Grid, top: int, row: int) -> tuple[Fact, ...]:
 
 
 def _is_of_the_file(fact: Fact) -> bool:
-    from specflow.importers.measured.names import name_of
-
     return bool(name_of(fact.key))
 
 
@@ -132,7 +136,7 @@ def _last_row(grid: Grid, block: int, column: int) -> int:
 
 
 def _named(
-    table: FoundTable, facts: Sequence[Fact], units: Sequence[tuple[str, str]], columns: Sequence[int]
+    table: FoundTable, facts: Sequence[Fact], units: Sequence[tuple[str, str, str]], columns: Sequence[int]
 ) -> tuple[HeaderCell, ...]:
     """Name the axis by its start and stop, and the only other column by the only unit above."""
     axis = _axis_of(table, facts, columns)
@@ -149,10 +153,9 @@ def _named(
                 header, text=name, unit=unit, unit_row=header.row, unit_from=f"the settings above, {cell}"
             )
         elif len(others) == len(units) == 1:
-            found, where = units[0]
-            header = replace(
-                header, unit=found, unit_row=header.row, unit_from=f"the settings above, {where}"
-            )
+            found, title, where = units[0]
+            source = f"the settings above, {where}"
+            header = replace(header, text=title, unit=found, unit_row=header.row, unit_from=source)
         named.append(header)
     return tuple(named)
 
@@ -178,20 +181,21 @@ def _axis_of(table: FoundTable, facts: Sequence[Fact], columns: Sequence[int]) -
     return (fitting[0], str(low.unit), starts[0].cell) if len(fitting) == 1 else None
 
 
-def _units_above(
-    grid: Grid, block: int, facts: Sequence[Fact], columns: Sequence[int]
-) -> list[tuple[str, str]]:
-    """Units that stand alone in a row of the section above, with their cells: "Trace 1,,dBm"."""
-    told = {fact.row for fact in facts}
+def _units_above(grid: Grid, block: int) -> list[tuple[str, str, str]]:
+    """Units in the section above that belong to no number, with the words of their row and their cells: "Trace 1,,dBm"."""
     found = []
     for row in range(_section_row(grid, grid.first_row, block), block):
-        if row in told:
-            continue
+        before: Value = ""
+        name = ""
         for column, value in enumerate(grid.row(row), start=1):
-            if isinstance(value, str) and not is_blank(value) and not looks_numeric(value):
+            if is_blank(value):
+                continue
+            if isinstance(value, str) and not looks_numeric(value):
                 unit = known_unit(value.strip())
-                if unit is not None and str(unit) != "1" and column > 1:
-                    found.append((value.strip(), grid.address(row, column)))
+                if name and unit is not None and str(unit) != "1" and not looks_numeric(str(before)):
+                    found.append((value.strip(), name, grid.address(row, column)))
+                name = name or " ".join(value.split())
+            before = value
     return found
 
 
@@ -205,14 +209,3 @@ def _words_above(grid: Grid, top: int, block: int) -> tuple[str, ...]:
             break
         words += [re.sub(r"[0-9]+", "#", header_key(text)) for text in texts]
     return tuple(words)
-
-
-def how_to_name(table: FoundTable) -> Question | None:
-    """The question about a block whose columns nothing names."""
-    first = table.headers[0]
-    if not any(header.text.startswith("column #") for header in table.headers):
-        return None
-    what = f"a block of numbers without headers, {table.place}"
-    letters = ", ".join(header.letter for header in table.headers[:4])
-    remedy = f'say what its columns are: column = "{first.letter}" and so on in a mapping (columns {letters})'
-    return Question("", first.cell, what, remedy)

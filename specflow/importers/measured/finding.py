@@ -6,12 +6,12 @@ from collections.abc import Iterator
 from dataclasses import replace
 
 from specflow.importers.measured.beside import strips_of
-from specflow.importers.measured.blocks import block_table, find_block, is_far_from
+from specflow.importers.measured.blocks import block_table, end_before_more, find_block, is_far_from
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.corner import find_number_row, table_under
 from specflow.importers.measured.sideways import find_sideways
 from specflow.importers.measured.tables import FoundTable, cut_table, find_header
-from specflow.importers.readers import Grid
+from specflow.importers.readers import CellRange, Grid
 
 _ROWS_BELOW = 2
 
@@ -56,5 +56,8 @@ def _next(grid: Grid, top: int, context: Context) -> tuple[FoundTable, int] | No
         return table, table.stop_row
     if row is None:
         return None
+    last = grid.last_row if block is None else end_before_more(grid, block)
+    if last < grid.last_row:
+        grid = grid.cut(CellRange(grid.first_row, grid.first_column, last, grid.last_column))
     table = cut_table(grid, top, row, 1, context.recognises)
     return table, table.stop_row

@@ -106,6 +106,28 @@ def find_units_row(grid: Grid, row: int, headers: tuple[HeaderCell, ...]) -> int
     return None
 
 
+def with_nameless_axis(grid: Grid, row: int, headers: tuple[HeaderCell, ...]) -> tuple[HeaderCell, ...]:
+    """Add the one column without a header, left of the others, of which a row below the headers gives the unit alone.
+
+    Analysers write ",Trace 1,Trace 2" over "Hz,," and the readings; it is called a frequency where the unit is one and
+    the settings above speak of a frequency.
+    """
+    filled = [(column, value) for column, value in enumerate(grid.row(row), start=1) if not is_blank(value)]
+    if len(filled) != 1 or row in grid.comment_rows or row > grid.last_row or not headers:
+        return headers
+    column, value = filled[0]
+    unit = known_unit(value.strip()) if isinstance(value, str) and not looks_numeric(value) else None
+    if unit is None or column >= headers[0].column:
+        return headers
+    above = [
+        cell for number in range(grid.first_row, row) for cell in grid.row(number) if isinstance(cell, str)
+    ]
+    speaks = any("freq" in cell.casefold() for cell in above)
+    text = "Frequency" if unit.dimension == "frequency" and speaks else f"column #{column}"
+    axis = HeaderCell(column, headers[0].row, text, str(value).strip(), row, turned=grid.turned)
+    return (axis, *headers)
+
+
 def with_unit(grid: Grid, header: HeaderCell, row: int) -> HeaderCell:
     text, k = _unit_and_k(str(grid.value(row, header.column)).strip())
     return (

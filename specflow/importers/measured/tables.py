@@ -22,6 +22,7 @@ from specflow.importers.measured.header_cells import (
     find_units_row,
     has_second_row,
     read_headers,
+    with_nameless_axis,
     with_unit,
 )
 from specflow.importers.measured.header_text import header_key
@@ -148,6 +149,9 @@ def cut_table(grid: Grid, top: int, row: int, header_rows: int, recognises: Reco
     header_rows = max(header_rows, 2 if has_second_row(grid, row) else 1)
     headers = read_headers(grid, row, header_rows)
     units_row = find_units_row(grid, row + header_rows, headers)
+    if units_row is None:
+        headers = with_nameless_axis(grid, row + header_rows, headers)
+        units_row = row + header_rows if any(header.unit for header in headers) else None
     if units_row is not None:
         headers = tuple(with_unit(grid, header, units_row) for header in headers)
     first = row + header_rows if units_row is None else units_row + 1

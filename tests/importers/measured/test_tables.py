@@ -261,10 +261,18 @@ def test_columns_named_by_items_are_asked_about_with_the_pivot_that_reads_them(t
     assert [table.columns.items.word(row) for row in range(2)] == ["LNA-1", "LNA-2"]
 
 
-def test_a_table_on_its_side_is_told_in_one_question(tmp_path: Path) -> None:
-    rows = [["DUT", "LNA-1"], [], ["f (GHz)", 27.5, 28, 30], ["Gain (dB)", 20, 19, 18], ["NF (dB)", 1, 2, 3]]
-    asked = questions(one_table(book(tmp_path / "a.xlsx", rows), stated={"block": "LNA"}))
-    assert "lies on its side" in asked and "transpose" in asked and "numbers without a header" not in asked
+def test_a_table_on_its_side_keeps_its_true_cells(tmp_path: Path) -> None:
+    rows = [["DUT", "LNA-1"], [], ["f (GHz)", 27.5, 28, 30], ["Gain (dB)", 20, 19, "OL"], ["NF (dB)", 1, 2, 3]]
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows), stated={"block": "LNA"}))
+    assert table.document is not None and table.columns is not None
+    assert low(table, "NF") == [1, 2, 3] and list(table.columns.conditions.numeric["frequency"]) == [27.5, 28, 30]
+    assert (table.place, table.document.turned) == ("A3:D5", True)
+    assert table.columns.items.labels == ("LNA-1",)
+    cells = [
+        table.document.cell(int(row), table.document.values[1].column) for row in table.columns.source_rows
+    ]
+    assert cells == [(5, 2), (5, 3), (5, 4)]
+    assert list(rejected(table)) == ["D4"]
 
 
 def test_a_condition_among_rows_that_begin_with_items_is_asked_about(tmp_path: Path) -> None:
