@@ -1,9 +1,9 @@
 """Lists of peaks, as spurious searches give them: told from traces, with the ranges that were scanned and their floors.
 
-The floor of each scan becomes a row of its own ("less than the floor", in the bandwidth of the scan), for every item and
-setting that the list has. What hides under a floor may be noise, which scales with bandwidth, or a line, which does
-not: its spectrum is unknown. A list that does not say what was scanned, or down to which floor, is kept
-all the same: it can fail a limit and proves none, and that is said.
+The floor of each scan becomes a row of its own ("less than the floor", in the bandwidth of the scan), for every item
+and setting of the list. What hides under a floor may be noise, which scales with bandwidth, or a line, which does not:
+its spectrum is unknown. A list that does not say what was scanned, or down to which floor, is kept all the same: it can
+fail a limit and proves none, and that is said.
 """
 
 from __future__ import annotations

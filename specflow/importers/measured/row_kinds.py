@@ -41,7 +41,7 @@ def by_row_kind(
     kinds = _kinds(work)
     if kinds is None or not values or len(columns.source_rows) != len(kinds):
         return columns, values
-    distinct = list(dict.fromkeys(kinds))
+    distinct = set(kinds)
     if len(distinct) > _MOST:
         work.ask(
             "",
@@ -53,14 +53,23 @@ def by_row_kind(
     arrays: dict[str, ValueArrays] = {}
     documents: list[ValueColumn] = []
     for value in values:
-        for kind in distinct:
-            chosen = np.array([one == kind for one in kinds])
+        own = [_for(work, value, kind) for kind in kinds]
+        for kind in dict.fromkeys(own):
             document = _of_kind(value, kind)
-            arrays[document.name] = _only(columns.values[value.name], chosen)
+            arrays[document.name] = _only(columns.values[value.name], np.array([one == kind for one in own]))
             documents.append(document)
-    return EvidenceColumns(
+    split = EvidenceColumns(
         columns.conditions, arrays, columns.source_rows, columns.items, columns.dates, columns.extra
-    ), documents
+    )
+    return split, documents
+
+
+def _for(work: TableWork, value: ValueColumn, kind: RowKind) -> RowKind:
+    """What a kind means for one quantity: a gain is the same in every bandwidth."""
+    parameter = work.context.dictionary.get(value.quantity.parameter)
+    if parameter is None or not parameter.needs_bandwidth:
+        return RowKind(kind.spectrum, None)
+    return kind
 
 
 def _kinds(work: TableWork) -> list[RowKind] | None:

@@ -141,8 +141,18 @@ def test_a_column_that_says_the_same_in_every_row_speaks_of_the_table(tmp_path: 
     table = taken(one_table(book(tmp_path / "a.xlsx", rows)))
     assert table.document is not None
     assert table.document.values[0].quantity.bandwidth_hz == 100e3 and table.document.set_up == "bench 3"
-    rows[2][2] = 1000
-    assert "more than one bandwidth: 100, 1000" in questions(one_table(book(tmp_path / "b.xlsx", rows)))
+    rows[2][3] = "bench 4"
+    assert "more than one set up: bench 3, bench 4" in questions(one_table(book(tmp_path / "b.xlsx", rows)))
+
+
+def test_a_bandwidth_of_each_row_makes_a_column_for_each(tmp_path: Path) -> None:
+    rows = [["f (GHz)", "Spurious (dBm)", "Gain (dB)", "RBW (kHz)"], [27.5, -60, 20, 100], [28, -61, 21, 1000]]
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows)))
+    assert table.document is not None
+    found = {one.name: one.quantity.bandwidth_hz for one in table.document.values}
+    assert found == {"Spurious (in 100000 Hz)": 100e3, "Spurious (in 1e+06 Hz)": 1e6, "Gain": None}
+    assert [low(table, name)[0] for name in ("Spurious (in 100000 Hz)", "Gain")] == [-60, 20]
+    assert [low(table, name)[1] for name in ("Spurious (in 1e+06 Hz)", "Gain")] == [-61, 21]
 
 
 def test_the_bandwidth_of_a_density_is_that_of_its_unit(tmp_path: Path) -> None:
