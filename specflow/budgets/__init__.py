@@ -4,9 +4,12 @@ What may live here, in the order of a run:
 
 - ``required`` where a budget is evaluated; ``own_conditions`` what each block meets there; ``interpolation``,
   ``traces``, ``line_values`` what a line comes to
-- ``forms`` and ``roles`` what a line is for the law; ``checks``, ``sidebands``, ``further`` what is refused; ``read`` and ``chain`` the budget read
-- ``paths``, ``image`` what parallel paths and image noise make of figures; ``figures`` what the laws combine, and the way back for derivatives; ``outputs`` what a law gives, ``cascade`` (with
-  ``cascade_level``, ``cascade_noise``, ``cascade_distortion``, ``cascade_dc``, ``cascade_interference``) and ``sums`` the tables of it, ``laws`` what they need
+- ``forms`` and ``roles`` what a line is for the law; ``checks``, ``sidebands``, ``further``, ``physical`` what is
+  refused; ``read`` and ``chain`` the budget read
+- ``paths``, ``image`` what parallel paths and image noise make of figures; ``figures`` what the laws combine, and the
+  way back for derivatives; ``outputs`` what a law gives, ``cascade`` (with ``cascade_level``, ``cascade_noise``,
+  ``cascade_distortion``, ``cascade_dc``, ``cascade_interference``) and ``sums`` the tables of it, ``laws`` what they
+  need
 - ``margins`` limits; ``evaluate`` and ``result`` the nominal result; ``slopes`` and ``shares`` of it
 - ``spread`` what tolerances say; ``corners`` worst cases, ``root_sum`` RSS; ``draws``, ``specimens`` and ``trials``
   Monte Carlo

@@ -1,7 +1,7 @@
 """DC power and efficiency of a cascade: values, cumulative columns, shares and derivatives.
 
 A position draws what its line dc_power states for each of its elements, or what its output level needs at the
-efficiency it states: P_out/η (drain), (P_out - P_in)/η (power added). Source: definitions, see ``calculators.dc_power``.
+efficiency it states: P_out/η (drain), (P_out - P_in)/η (power added). Source: as ``calculators.dc_power``.
 """
 
 from __future__ import annotations

@@ -25,6 +25,7 @@ from specflow.parameters import Dictionary
 Floats = NDArray[np.float64]
 #: RSS is refused where what bends the law reaches this part of the root sum itself (our choice, no source).
 MOST_BEND = 0.15
+MOST_SIGMA = 10.0
 _SMALL = 1e-9
 
 
@@ -33,7 +34,8 @@ class OutputRss:
     """One quantity with the root sum of squares of its tolerances: ``low``, ``high`` (n,) about the nominal.
 
     ``means`` says what they are: "limits" (neither a k·σ nor guaranteed) or "2 sigma". ``deviation`` (n,) is the
-    standard deviation, None where a line names no distribution.
+    standard deviation, None where a line names no distribution; ``shift`` (n,) how far the means of tolerances with
+    unlike sides take the result from the nominal: a range of k·σ that was asked for lies about that.
     """
 
     parameter: str
@@ -44,6 +46,7 @@ class OutputRss:
     means: str
     deviation: Floats | None
     served: tuple[ServedRange, ...]
+    shift: Floats | None = None
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -64,21 +67,35 @@ class Rss:
 
 
 def rss(
-    budget: Budget, snapshot: Snapshot, dictionary: Dictionary, *, values: Overrides | None = None
+    budget: Budget,
+    snapshot: Snapshot,
+    dictionary: Dictionary,
+    *,
+    k: float | None = None,
+    values: Overrides | None = None,
 ) -> Rss:
     """Return the root sum of squares of the tolerances at every required condition.
+
+    ``k`` asks for that many standard deviations, for which every line has to name its distribution; without it the
+    tolerances are taken as they are stated: limits, their common k·σ, or one σ where they differ.
 
     Formula: √(dᵀ R d), d_i = slope · tolerance, R the correlation of the lines; the two sides apart. Valid where the
     law is roughly linear over the tolerances and every line says what its tolerance means.
 
     Raises CalculationError where a line does not say it, or where the law bends too much; else as ``evaluate_budget``.
     """
+    if k is not None and not 0 < k <= MOST_SIGMA:
+        raise CalculationError(
+            f"{k:g} is no number of standard deviations", hint=f"give one above 0, at most {MOST_SIGMA:g}"
+        )
     prepared = prepare(budget, snapshot, dictionary, values=values)
     check_bounds(prepared.chain)
-    means = _one_meaning(prepared.chain)
+    means = _one_meaning(prepared.chain) if k is None else f"{k:g} sigma"
+    if k is not None:
+        _check_named(prepared.chain, k)
     nominal = nominal_result(prepared)
     outputs = tuple(
-        _rss(prepared.chain, output, bars, one.result, means)
+        _rss(prepared.chain, output, bars, one.result, means, k)
         for output, bars, one in zip(prepared.outputs, prepared.bars, nominal.outputs, strict=True)
     )
     return Rss(budget, nominal, outputs, nominal.notes)
@@ -109,7 +126,24 @@ def _one_meaning(chain: Chain) -> str:
     return "1 sigma"
 
 
-def _rss(chain: Chain, output: Output, bars: Sequence[Bar], nominal: Floats, means: str) -> OutputRss:
+def _check_named(chain: Chain, k: float) -> None:
+    """A standard deviation comes from a distribution: refuse lines that name none."""
+    silent = [
+        read.line.place
+        for read in chain.lines
+        if moves(read.line) and read.line.tolerance is not None and moments(read.line.tolerance) is None
+    ]
+    if silent:
+        raise CalculationError(
+            f"{k:g} σ need standard deviations, and these lines name no distribution: {', '.join(silent)}",
+            where=f"budget {chain.budget.id}",
+            hint="name the distribution between the limits, or leave the number of σ out",
+        )
+
+
+def _rss(
+    chain: Chain, output: Output, bars: Sequence[Bar], nominal: Floats, means: str, k: float | None
+) -> OutputRss:
     slopes = slopes_at(chain, output, chain.nominal())
     lines = [read.line for read in chain.lines]
     matrix = correlation_matrix(chain.budget, lines)
@@ -119,6 +153,7 @@ def _rss(chain: Chain, output: Output, bars: Sequence[Bar], nominal: Floats, mea
     _refuse_bend(chain, output, slopes, nominal, (high - low) / 2.0)
     deviation = None
     found = [None if line.tolerance is None else moments(line.tolerance) for line in lines]
+    shift = None
     if all(one is not None or not moves(line) for one, line in zip(found, lines, strict=True)):
         each = np.array(
             [
@@ -127,8 +162,12 @@ def _rss(chain: Chain, output: Output, bars: Sequence[Bar], nominal: Floats, mea
             ]
         )
         deviation = _root(slopes * each[:, None], matrix)
+        shift = np.array([0.0 if one is None else one.mean for one in found]) @ slopes
+    if k is not None:
+        assert deviation is not None and shift is not None  # checked before
+        low, high = nominal + shift - k * deviation, nominal + shift + k * deviation
     served = tuple(held_between(bar, low, high) for bar in bars)
-    return OutputRss(output.parameter, output.unit, nominal, low, high, means, deviation, served)
+    return OutputRss(output.parameter, output.unit, nominal, low, high, means, deviation, served, shift)
 
 
 def _amounts(chain: Chain, slopes: Floats, means: str) -> tuple[Floats, Floats]:

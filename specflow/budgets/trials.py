@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
 from functools import cached_property
@@ -148,12 +148,13 @@ def monte_carlo(
     values: Overrides | None = None,
     block: int = _BLOCK,
     threads: int = 1,
+    told: Callable[[int], None] | None = None,
 ) -> MonteCarloResult:
     """Return probabilities and worst margins of ``trials`` specimens drawn by the tolerances of the lines.
 
     One specimen has one deviation of each line at all its conditions; lines of one correlation group share it. The
     result depends on ``seed`` and ``trials`` only: ``block`` (trials handed out at once) and ``threads`` change the
-    time it takes. Levels that drive a block are those of the nominal chain.
+    time it takes. ``told`` hears how many trials are done. Levels that drive a block are those of the nominal chain.
 
     Raises CalculationError for lines without a distribution, else as ``evaluate_budget``.
     """
@@ -165,14 +166,20 @@ def monte_carlo(
         )
     prepared = prepare(budget, snapshot, dictionary, values=values)
     check_bounds(prepared.chain)
-    return drawn_result(prepared, draws_of(prepared.chain, seed), trials, seed, block, threads)
+    return drawn_result(prepared, draws_of(prepared.chain, seed), trials, seed, block, threads, told)
 
 
 def drawn_result(
-    prepared: Prepared, draws: Draws, trials: int, seed: int, block: int = _BLOCK, threads: int = 1
+    prepared: Prepared,
+    draws: Draws,
+    trials: int,
+    seed: int,
+    block: int = _BLOCK,
+    threads: int = 1,
+    told: Callable[[int], None] | None = None,
 ) -> MonteCarloResult:
     """Return the result of a budget that was read, from streams of deviations."""
-    run = _Run(prepared, draws, trials, block, threads)
+    run = _Run(prepared, draws, trials, block, threads, told)
     return _result(run, run.tally(), seed)
 
 
@@ -204,7 +211,16 @@ class _Tally:
 class _Run:
     """One way through all trials, chunk by chunk."""
 
-    def __init__(self, prepared: Prepared, draws: Draws, trials: int, block: int, threads: int) -> None:
+    def __init__(
+        self,
+        prepared: Prepared,
+        draws: Draws,
+        trials: int,
+        block: int,
+        threads: int,
+        told: Callable[[int], None] | None,
+    ) -> None:
+        self.told = told
         self.prepared = prepared
         self.chain: Chain = prepared.chain
         self.draws = draws
@@ -225,15 +241,24 @@ class _Run:
         def work(piece: range) -> list[_Tally]:
             return [self._chunk(number, worst) for number in piece]
 
+        parts: list[_Tally] = []
         if self.threads == 1:
-            parts = [tally for piece in pieces for tally in work(piece)]
+            for piece in pieces:
+                parts += self._counted(piece, work(piece))
         else:
             with ThreadPoolExecutor(self.threads) as pool:
-                parts = [tally for found in pool.map(work, pieces) for tally in found]
+                for piece, found in zip(pieces, pool.map(work, pieces), strict=True):
+                    parts += self._counted(piece, found)
         total = parts[0]
         for part in parts[1:]:
             total.add(part)
         return total
+
+    def _counted(self, piece: range, found: list[_Tally]) -> list[_Tally]:
+        """Tell how many trials are done after a piece."""
+        if self.told is not None:
+            self.told(min(piece.stop * CHUNK, self.trials))
+        return found
 
     def _chunk(self, number: int, worst: Margins) -> _Tally:
         size = min(CHUNK, self.trials - number * CHUNK)

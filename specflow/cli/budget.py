@@ -60,6 +60,14 @@ SetOption = Annotated[
         show_default=False,
     ),
 ]
+SigmaOption = Annotated[
+    float | None,
+    typer.Option(
+        "--sigma",
+        help="Root sum of squares at so many standard deviations; without it as the tolerances are stated.",
+        show_default=False,
+    ),
+]
 ReasonOption = Annotated[
     str,
     typer.Option("--reason", help="Why the budget is edited; it stays in the history.", show_default=False),
@@ -72,6 +80,7 @@ def budget(
     method: MethodOption = None,
     trials: TrialsOption = None,
     seed: SeedOption = 1,
+    sigma: SigmaOption = None,
     settings: SetOption = None,
     reason: ReasonOption = "",
     yes: YesOption = False,
@@ -100,7 +109,7 @@ def budget(
             table = list_budgets(store)
         put_json(table_as_json(table)) if as_json else put_table(table)
         return
-    how = _how(method, trials, seed)
+    how = _how(method, trials, seed, sigma)
     with open_store(project, read_only=True) as store, progress(f"budget {code}") as step:
         shown = show_budget(store, code, at=at, how=how, step=step)
     if as_json:
@@ -185,8 +194,8 @@ def _put_pictures(shown: ShownBudget) -> None:
         put("\n".join(picture_lines(picture, width)) + "\n")
 
 
-def _how(method: list[str] | None, trials: int | None, seed: int) -> HowToCompute:
+def _how(method: list[str] | None, trials: int | None, seed: int, sigma: float | None) -> HowToCompute:
     from specflow.workflows.budget_outcome import ALL_WAYS, HowToCompute
     from specflow.workflows.show_budget import ways_named
 
-    return HowToCompute(ways=ways_named(method) if method else ALL_WAYS, trials=trials, seed=seed)
+    return HowToCompute(ways=ways_named(method) if method else ALL_WAYS, trials=trials, seed=seed, k=sigma)

@@ -94,12 +94,14 @@ class HowToCompute:
     """Which ways of treating tolerances to go, and the trials and seed of a Monte Carlo run.
 
     Without ``trials`` 20,000 are drawn, fewer where there are very many condition points (the result says how many).
-    Of several ``ways`` one that cannot be gone is kept with the reason; a single one that cannot is an error.
+    ``k`` asks for a root sum of squares at that many standard deviations. Of several ``ways`` one that cannot be gone
+    is kept with the reason; a single one that cannot is an error.
     """
 
     ways: Sequence[Way] = ALL_WAYS
     trials: int | None = None
     seed: int = SEED
+    k: float | None = None
 
     def trials_over(self, places: int) -> int:
         """Return how many trials are drawn over so many condition points."""
@@ -123,7 +125,7 @@ def budget_outcome(
         trials = how.trials_over(len(outcome.places))
         step(f"{way.value}, {trials:,} trials" if way is Way.MONTE_CARLO else way.value)
         try:
-            outcome, found = _gone(way, outcome, snapshot, dictionary, how)
+            outcome, found = _gone(way, outcome, snapshot, dictionary, how, step)
         except CalculationError as error:
             if len(how.ways) == 1:
                 raise
@@ -133,7 +135,12 @@ def budget_outcome(
 
 
 def _gone(
-    way: Way, outcome: BudgetOutcome, snapshot: Snapshot, dictionary: Dictionary, how: HowToCompute
+    way: Way,
+    outcome: BudgetOutcome,
+    snapshot: Snapshot,
+    dictionary: Dictionary,
+    how: HowToCompute,
+    step: Step,
 ) -> tuple[BudgetOutcome, list[WayOutcome]]:
     budget = outcome.budget
     match way:
@@ -142,10 +149,14 @@ def _gone(
             notes = dict.fromkeys((*outcome.notes, *found.notes))
             return replace(outcome, notes=tuple(notes)), _worst_ways(found)
         case Way.RSS:
-            return outcome, _rss_ways(rss(budget, snapshot, dictionary))
+            return outcome, _rss_ways(rss(budget, snapshot, dictionary, k=how.k), how.k)
         case Way.MONTE_CARLO:
             trials = how.trials_over(len(outcome.places))
-            drawn = monte_carlo(budget, snapshot, dictionary, trials=trials, seed=how.seed)
+
+            def told(done: int) -> None:
+                step(f"{way.value}, {done:,} of {trials:,} trials")
+
+            drawn = monte_carlo(budget, snapshot, dictionary, trials=trials, seed=how.seed, told=told)
             return _with_chances(outcome, drawn), _chance_ways(drawn)
     return outcome, []
 
@@ -327,10 +338,13 @@ def _worst_ways(found: WorstCase) -> list[WayOutcome]:
     ]
 
 
-def _rss_ways(found: Rss) -> list[WayOutcome]:
+def _rss_ways(found: Rss, k: float | None) -> list[WayOutcome]:
+    assumes = _ASSUMES[Way.RSS]
+    if k is not None:
+        assumes = f"{assumes}; {k:g} σ as asked for, about the mean, which tolerances with unlike sides move"
     return [
         replace(
-            _between(Way.RSS, one.parameter, held, _ASSUMES[Way.RSS]),
+            _between(Way.RSS, one.parameter, held, assumes),
             means="of limits" if one.means == "limits" else f"± {one.means.replace('sigma', 'σ')}",
         )
         for one in found.outputs

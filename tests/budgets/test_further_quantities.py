@@ -255,4 +255,6 @@ def test_shares_of_dc_power_add_up() -> None:
 def test_a_limit_on_blocking_is_a_lower_one() -> None:
     budget = a_chain({**LNA, "desensitisation": 3.0}, MIX, parameter="blocking_level", **FIELDS)
     found = evaluate_budget(budget, project_of(budget, limit=at_least(-35, "dBm")), DICTIONARY)
-    assert found.served[0].closes is True and found.served[0].smallest_margin == pytest.approx(3.3386, abs=1e-3)
+    assert found.served[0].closes is True and found.served[0].smallest_margin == pytest.approx(
+        3.3386, abs=1e-3
+    )

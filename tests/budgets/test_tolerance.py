@@ -428,3 +428,43 @@ def test_k_sigma_of_a_passive_loss_ends_at_0_db() -> None:
         budget = a_chain(stage, parameter="gain")
         found = worst_case(budget, project_of(budget), DICTIONARY).of("gain")
         assert (found.low[0], found.high[0]) == pytest.approx((-0.7, 0.0))
+
+
+def test_rss_at_a_chosen_k_lies_about_the_mean_and_says_so() -> None:
+    """+0.4/-0.2 dB triangular about 0: mean (0.4 - 0.2)/3, variance (0.2² + 0.4² + 0.2·0.4)/18; and 0.3 dB at 2σ."""
+    skew = {"tolerance": {"minus": 0.2, "plus": 0.4, "meaning": "limits", "distribution": "triangular"}}
+    budget = a_chain({"block": "A", "gain": 10.0, "more": {"gain": skew}},
+                     {"block": "B", "gain": 5.0, "more": {"gain": sigma(0.3)}}, parameter="gain")  # fmt: skip
+    snapshot = project_of(budget, limit=at_least(1))
+    deviation = np.hypot(np.sqrt((0.04 + 0.16 + 0.08) / 18.0), 0.15)
+    for k in (1.0, 3.0):
+        found = rss(budget, snapshot, DICTIONARY, k=k).of("gain")
+        assert found.means == f"{k:g} sigma"
+        assert found.high == pytest.approx(15.0 + 0.2 / 3.0 + k * deviation)
+        assert found.low == pytest.approx(15.0 + 0.2 / 3.0 - k * deviation)
+
+
+def test_rss_at_a_chosen_k_needs_distributions_and_a_k_that_is_one() -> None:
+    budget = a_chain({"block": "A", "gain": 10.0, "more": {"gain": limits(1.0, None)}}, parameter="gain")
+    snapshot = project_of(budget, limit=at_least(1))
+    with pytest.raises(CalculationError, match=r"3 σ need standard deviations.*A gain"):
+        rss(budget, snapshot, DICTIONARY, k=3.0)
+    with pytest.raises(CalculationError, match="no number of standard deviations"):
+        rss(budget, snapshot, DICTIONARY, k=0.0)
+
+
+def test_trials_tell_how_far_they_are() -> None:
+    budget = receiver()
+    heard: list[int] = []
+    for threads in (1, 2):
+        monte_carlo(
+            budget,
+            project_of(budget),
+            DICTIONARY,
+            trials=2 * CHUNK + 5,
+            seed=1,
+            block=CHUNK,
+            threads=threads,
+            told=heard.append,
+        )
+    assert heard == 2 * [CHUNK, 2 * CHUNK, 2 * CHUNK + 5]
