@@ -9,6 +9,7 @@ import numpy as np
 
 from specflow.importers.measured.column import ColumnMeaning
 from specflow.importers.measured.header_text import known_unit
+from specflow.importers.measured.linear_values import doubt_linear
 from specflow.importers.measured.readings import Numbers, read_numbers
 from specflow.importers.measured.result import Role
 from specflow.importers.measured.stated import Said
@@ -56,6 +57,7 @@ def column_numbers(work: TableWork, meaning: ColumnMeaning) -> Numbers:
         work.questions.append(meaning.asks(numbers.problem, ONE_FORMAT))
     _reject_merged(work, meaning.column, numbers)
     _doubt_sign(work, meaning, numbers)
+    doubt_linear(work, meaning, numbers)
     work.notes += [f"{meaning.header.line}: {note}" for note in numbers.notes]
     return numbers
 
