@@ -11,11 +11,11 @@ from specflow.units import parse_unit
 
 
 def doubt_linear(work: TableWork, meaning: ColumnMeaning, numbers: Numbers) -> None:
-    """Reject negative readings of a quantity that has a level (powers, amplitudes, their ratios); say how many are 0."""
+    """Reject negative readings of a quantity that has a level (power, amplitude, their ratios); say how many are 0."""
     parameter = meaning.parameter
     if parameter is None or parameter.log_factor is None or parse_unit(meaning.unit or "1").is_log:
         return
-    reason = f"a {parameter.title.lower()} in {meaning.unit} cannot be negative: an offset of the instrument, or a sign"
+    reason = f"{parameter.title} in {meaning.unit} cannot be negative: an offset of the instrument, or a wrong sign"
     negative = np.flatnonzero(np.isfinite(numbers.high) & (numbers.high < 0))
     for place in negative.tolist():
         work.rejects.add(int(work.rows[place]), meaning.column, float(numbers.low[place]), reason)
@@ -24,6 +24,6 @@ def doubt_linear(work: TableWork, meaning: ColumnMeaning, numbers: Numbers) -> N
     if len(zeros):
         count = f"{len(zeros)} readings are" if len(zeros) > 1 else "a reading is"
         work.notes.append(
-            f"{meaning.header.line}: {count} 0 {meaning.unit} (row {int(work.rows[zeros[0]])}): nothing there, or below the "
-            "resolution; as a level it lies below every limit"
+            f"{meaning.header.line}: {count} 0 {meaning.unit} (row {int(work.rows[zeros[0]])}): nothing there, or "
+            "below the resolution; as a level it lies below every limit"
         )
