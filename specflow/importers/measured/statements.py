@@ -68,8 +68,8 @@ def _holds_readings(cells: ColumnCells) -> bool:
 
 def _states(grid: Grid, row: int) -> bool:
     filled = [value for value in grid.row(row) if not is_blank(value)]
-    first = filled[0]
-    if not isinstance(first, str) or looks_numeric(first) or is_reading(first):
+    first = filled[0] if filled else ""  # a row of error cells holds nothing
+    if not filled or not isinstance(first, str) or looks_numeric(first) or is_reading(first):
         return False
     facts = read_facts(grid, row)
     if not facts or len(filled) > 3 * len(facts) or not _is_key(facts[0].key):
