@@ -73,8 +73,8 @@ def _compound(source: Source) -> Content:
         raise _refusal(source, "the workbook is protected by a password", hint)
     if any(name in source.content for name in _BOOKS):
         return Content.XLS
-    what = "this is a document of an older office program, but no workbook"
-    raise _refusal(source, what, "open it and save its tables as .xlsx")
+    what = "there is no workbook in this file of an older office program: it is another document, or damaged"
+    raise _refusal(source, what, "copy it again, or open it and save its tables as .xlsx")
 
 
 def _refusal(source: Source, message: str, hint: str) -> FileError:

@@ -104,8 +104,14 @@ def _flatten(pairs: _Pairs, prefix: str, line: _Line) -> None:
             continue
         if isinstance(value, list):
             line.lists += 1
-            value = json.dumps(value, default=list, ensure_ascii=False)
+            value = json.dumps(_plain(value), ensure_ascii=False)
         line.cells[key] = "" if value is None else value
+
+
+def _plain(value: Any) -> Any:
+    if isinstance(value, _Pairs):
+        return {name: _plain(one) for name, one in value}
+    return [_plain(one) for one in value] if isinstance(value, list) else value
 
 
 def _check_size(source: Source, keys: list[str], lines: int) -> None:
