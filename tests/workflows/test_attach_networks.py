@@ -1,0 +1,170 @@
+"""Network files as a user sees them: attached, derived for the requirements, judged, traced to the line of the file.
+
+The filter files are measurements that others published (origin in tests/data/README.md); the project about them is
+invented.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from datetime import date
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+import pytest
+
+from specflow.errors import DocumentError
+from specflow.model.conditions import Span
+from specflow.model.derivation import Derivation
+from specflow.model.evidence import EvidenceTable, Supersession
+from specflow.store import ProjectStore, create_project
+from specflow.workflows.attach import AttachOptions, Decision, accept_attach, preview_attach
+from specflow.workflows.evaluate_project import evaluate_project
+from specflow.workflows.trace import trace
+from tests.builders import (
+    a_block,
+    a_conditions_set,
+    a_dimension,
+    a_project,
+    a_quantity,
+    a_requirement,
+    adding,
+    an_activity,
+    an_item,
+    at_least,
+    at_most,
+)
+from tests.conftest import noon
+
+DATA = Path(__file__).parents[1] / "data"
+ME = Decision("A. B.")
+PORTS = {"port 1": "input", "port 2": "output"}
+FILTER = {"block": "FIL", "item": "FIL-7", "temperature": "case", **PORTS}
+
+
+def band(id: str, low: float, high: float, step: float, *more: Any) -> Any:
+    frequency = a_dimension(
+        span=Span(low=low, high=high, step=step), tolerance=0.0, text=f"{low} to {high} GHz step {step} GHz"
+    )
+    return a_conditions_set(id, frequency, *more)
+
+
+PASS_BAND = band(
+    "PASS", 1.0, 10.0, 0.1, a_dimension("temperature_case", "°C", values=(25.0, 125.0), tolerance=3.0)
+)
+PROJECT = (
+    a_block("FIL", name="Low-pass filter"),
+    an_item("FIL-7", block="FIL", serial="7"),
+    PASS_BAND,
+    a_requirement(
+        "R-IL", block="FIL", quantity=a_quantity("insertion_loss"), limit=at_most(0.5), conditions="PASS"
+    ),
+    an_activity("R-IL"),
+)
+
+
+@pytest.fixture
+def store(tmp_path: Path) -> Iterator[ProjectStore]:
+    with create_project(tmp_path / "p.specflow", a_project(), clock=noon) as project:
+        project.apply(adding(*PROJECT), by="A. B.")
+        yield project
+
+
+def attached(store: ProjectStore, path: Path, decision: Decision = ME, **stated: str) -> Any:
+    return accept_attach(store, preview_attach(store, path, AttachOptions(stated=stated)), decision)
+
+
+def status_of(store: ProjectStore, requirement: str) -> Any:
+    return evaluate_project(store, date(2026, 5, 5)).results.of(requirement)
+
+
+def test_an_insertion_loss_over_two_temperatures_is_proved_by_two_files(store: ProjectStore) -> None:
+    first = attached(store, DATA / "lowpass_25c.s2p", **FILTER)
+    assert list(first.tables) == ["EV-1", "EV-2"]
+    half = status_of(store, "R-IL")
+    attached(store, DATA / "lowpass_125c.s2p", **FILTER)
+    whole = status_of(store, "R-IL")
+    assert (half.k, half.n, whole.k, whole.n) == (1, 2, 2, 2)
+
+    snapshot = store.load()
+    raw, derived = snapshot.find(EvidenceTable, "EV-3"), snapshot.find(EvidenceTable, "EV-4")
+    assert raw is not None and derived is not None
+    assert [one.quantity.parameter for one in derived.values] == ["insertion_loss"]
+    assert {one.quantity.parameter for one in raw.values} == {"scattering_db", "scattering_angle"}
+    columns = snapshot.load_columns(["EV-4"])["EV-4"]
+    at = {float(f): float(v) for f, v in zip(columns.conditions.numeric["frequency"],
+                                             columns.values["insertion_loss"].low, strict=True)}  # fmt: skip
+    # facts of the files as published, read independently: S21 at 1, 2, 4 and 10 GHz
+    published = {1000.0: 0.0810, 2000.0: 0.1152, 4000.0: 0.1639, 10000.0: 0.3539}
+    assert {f: round(at[f], 4) for f in published} == published
+    [derivation] = [one for one in snapshot.all(Derivation) if one.inputs == ("EV-3",)]
+    assert (derivation.law, derived.derivation, derivation.digests) == ("loss", derivation.id, (raw.digest,))
+
+
+def test_a_loss_is_traced_to_the_number_in_the_file(store: ProjectStore) -> None:
+    attached(store, DATA / "lowpass_125c.s2p", **FILTER)
+    told = [cell for row in trace(store, date(2026, 5, 5), "R-IL").rows for cell in row.cells]
+    origins = [cell.origin for cell in told if cell.origin is not None and cell.origin.row]
+    words = " ".join(cell.text for cell in told)
+    assert "loss" in words and "S21 dB" in words
+    # the governing loss is that at 10 GHz, 0.3539 dB: number 4 of its line
+    number = (DATA / "lowpass_125c.s2p").read_text().splitlines()[413].split()[3]
+    assert round(float(number), 4) == -0.3539
+    assert any((one.row, one.column) == (414, 4) for one in origins), [str(one) for one in origins]
+
+
+def test_the_preview_shows_what_is_derived_and_why(store: ProjectStore) -> None:
+    preview = preview_attach(store, DATA / "lowpass_25c.s2p", AttachOptions(stated=FILTER))
+    [planned] = preview.planned[0]
+    assert (planned.plan.law, planned.plan.shown, planned.plan.why) == ("loss", "S21", "R-IL")
+    shown = {one.header: (one.meaning, one.reason) for one in preview.measurements.tables[0].recognised}
+    assert shown["port 1"] == ("input", "stated by the person")
+    assert shown["temperature"] == ("temperature case = 25 °C for all rows", "stated in line 6")
+    assert shown["input power"] == ("input level = 0 dBm for all rows", "stated in line 6")
+
+
+def test_ports_are_asked_for_where_a_requirement_needs_them(store: ProjectStore) -> None:
+    stated = {key: text for key, text in FILTER.items() if key not in PORTS}
+    preview = preview_attach(store, DATA / "lowpass_25c.s2p", AttachOptions(stated=stated))
+    [question] = preview.measurements.tables[0].questions
+    assert "R-IL" in question.what and 'port 1=..."' in question.remedy
+    with pytest.raises(DocumentError, match="1 question is open; nothing was stored"):
+        accept_attach(store, preview, ME)
+    raw_only = attached(store, DATA / "lowpass_25c.s2p", derive="none", **stated)
+    assert list(raw_only.tables) == ["EV-1"]
+
+
+def test_a_temperature_without_a_location_is_asked_for(store: ProjectStore) -> None:
+    stated = {key: text for key, text in FILTER.items() if key != "temperature"}
+    preview = preview_attach(store, DATA / "lowpass_125c.s2p", AttachOptions(stated=stated))
+    assert [one.cell for one in preview.measurements.tables[0].questions] == ["line 6"]
+
+
+def test_the_same_file_again_adds_nothing_until_a_requirement_speaks_of_more(store: ProjectStore) -> None:
+    attached(store, DATA / "lowpass_25c.s2p", **FILTER)
+    assert preview_attach(store, DATA / "lowpass_25c.s2p", AttachOptions(stated=FILTER)).is_unchanged
+    more = a_requirement(
+        "R-RL", block="FIL", quantity=a_quantity("return_loss", plane="input"), limit=at_least(15),
+        conditions="PASS",
+    )  # fmt: skip
+    store.apply(adding(more), by="A. B.")
+    preview = preview_attach(store, DATA / "lowpass_25c.s2p", AttachOptions(stated=FILTER))
+    assert not preview.is_unchanged and preview.new_derived == 1 and not preview.new_tables
+    assert list(accept_attach(store, preview, ME).tables) == ["EV-3"]
+    columns = store.load().load_columns(["EV-3"])["EV-3"]
+    place = int(np.flatnonzero(columns.conditions.numeric["frequency"] == 1000.0)[0])
+    assert round(float(columns.values["return_loss"].low[place]), 4) == 24.5678
+
+
+def test_a_file_that_replaces_another_replaces_what_was_derived_from_it(
+    store: ProjectStore, tmp_path: Path
+) -> None:
+    path = tmp_path / "filter.s2p"
+    path.write_text("# GHz S DB R 50\n1 -20 0 -0.3 0 -0.3 0 -20 0\n10 -20 0 -0.4 0 -0.4 0 -20 0\n")
+    stated = {**FILTER, "temperature_case": "25 °C"}
+    attached(store, path, **stated)
+    path.write_text("# GHz S DB R 50\n1 -20 0 -0.2 0 -0.2 0 -20 0\n10 -20 0 -0.4 0 -0.4 0 -20 0\n")
+    attached(store, path, Decision("A. B.", supersedes=("EV-1",)), **stated)
+    steps = {(one.earlier, one.later) for one in store.load().all(Supersession)}
+    assert steps == {("EV-1", "EV-3"), ("EV-2", "EV-4")}
