@@ -148,11 +148,23 @@ class Budget(Document):
         return self
 
 
+class Sharing(Document):
+    """The choices by which a budget was shared: what is needed to share it in the same way again."""
+
+    way: Literal["equal", "proportional", "least effort"]
+    fixed: tuple[Code, ...] = ()
+    free_gains: tuple[Code, ...] = ()
+    weights: tuple[tuple[Code, float], ...] = ()
+    at_nominal: bool = False
+    by_conditions: bool = False
+
+
 class Allocation(Document):
     """The link from a parent requirement to the block requirement that carries its share.
 
     ``budget`` with its revision, or "manual" with a reason. ``proposed`` is the limit that the budget gave and ``way``
-    how it was shared; where the child carries another limit by hand, ``manual_reason`` says why.
+    how it was shared, with what choices (``sharing``); where the child carries another limit by hand, ``manual_reason``
+    says why.
     """
 
     id: Code
@@ -164,6 +176,7 @@ class Allocation(Document):
     manual_reason: str = ""
     proposed: str = ""
     way: str = ""
+    sharing: Sharing | None = None
     state: Literal["proposed", "agreed", "baselined"] = "proposed"
     given_by: str = ""
     taken_by: str = ""
@@ -172,4 +185,4 @@ class Allocation(Document):
     origin: Origin | None = None
 
 
-__all__ = ["Allocation", "Budget", "BudgetLine", "BudgetPosition", "Correlation", "Law", "Reserve"]
+__all__ = ["Allocation", "Budget", "BudgetLine", "BudgetPosition", "Correlation", "Law", "Reserve", "Sharing"]

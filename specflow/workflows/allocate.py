@@ -21,7 +21,7 @@ from specflow.errors import DocumentError
 from specflow.limits import LimitContext, evaluate_limit, limit_difference, parse_limit
 from specflow.model.base import Document, code_key
 from specflow.model.block import Block
-from specflow.model.budget import Allocation, Budget, Reserve
+from specflow.model.budget import Allocation, Budget, Reserve, Sharing
 from specflow.model.change import Change
 from specflow.model.limit import Limit
 from specflow.model.requirement import Requirement, Source
@@ -62,6 +62,30 @@ class AllocateOptions:
     by_hand: Sequence[ByHand] = ()
     at_nominal: bool = False
     by_conditions: bool = False
+
+    @property
+    def sharing(self) -> Sharing:
+        """The choices as they are stored with the allocations."""
+        return Sharing(
+            way=self.way,
+            fixed=tuple(self.fixed),
+            free_gains=tuple(self.free_gains),
+            weights=tuple(sorted(self.weights.items())),
+            at_nominal=self.at_nominal,
+            by_conditions=self.by_conditions,
+        )
+
+    @classmethod
+    def of(cls, sharing: Sharing) -> AllocateOptions:
+        """Return the options that share as it was shared."""
+        return cls(
+            sharing.way,
+            fixed=sharing.fixed,
+            free_gains=sharing.free_gains,
+            weights=dict(sharing.weights),
+            at_nominal=sharing.at_nominal,
+            by_conditions=sharing.by_conditions,
+        )
 
 
 @dataclass(frozen=True, slots=True)
@@ -144,7 +168,7 @@ def propose(
         if not one.is_open and serves.get(one.key)
     ]
     closure = closure_test(probe, {one.allotment.key: _as_given(one, probe) for one in proposals})
-    documents = _documents(snapshot, budget, proposals, options.way)
+    documents = _documents(snapshot, budget, proposals, options.sharing)
     if budget != stored:
         documents.insert(0, budget)
     return AllocatePreview(
@@ -386,17 +410,17 @@ def _free_id(snapshot: Snapshot, stem: str) -> str:
     return code
 
 
-def _documents(snapshot: Snapshot, budget: Budget, proposals: Sequence[Proposal], way: Way) -> list[Document]:
+def _documents(snapshot: Snapshot, budget: Budget, proposals: Sequence[Proposal], sharing: Sharing) -> list[Document]:
     revision = due_revision(snapshot.find(Budget, budget.id), budget) or budget.revision
     documents: list[Document] = [one.child for one in proposals]
     for one in proposals:
         for code in one.parents:
-            documents.append(_link(snapshot, budget, revision, one, code, way))
+            documents.append(_link(snapshot, budget, revision, one, code, sharing))
     return documents
 
 
 def _link(
-    snapshot: Snapshot, budget: Budget, revision: int, one: Proposal, code: str, way: Way
+    snapshot: Snapshot, budget: Budget, revision: int, one: Proposal, code: str, sharing: Sharing
 ) -> Allocation:
     parent = snapshot.find(Requirement, code)
     assert parent is not None  # a budget is read only when all it serves is there
@@ -415,7 +439,8 @@ def _link(
         "budget": budget.id,
         "budget_revision": revision,
         "proposed": text,
-        "way": way,
+        "way": sharing.way,
+        "sharing": sharing,
         "manual_reason": one.reason,
     }
     if all(getattr(fresh, name) == value for name, value in fields.items()):

@@ -163,10 +163,11 @@ def _moved(link: Allocation, before: Snapshot, after: Snapshot) -> str:
 
 
 def _given(after: Snapshot, dictionary: Dictionary, budget: Budget) -> tuple[dict[str, str], str]:
-    """Return what the budget would give each child, by its key, shared in the way it was shared before."""
-    way = next((link.way for link in _links(after, budget) if link.way), "proportional")
+    """Return what the budget would give each child, by its key, shared with the choices it was shared with before."""
+    sharing = next((link.sharing for link in _links(after, budget) if link.sharing is not None), None)
+    options = AllocateOptions.of(sharing) if sharing is not None else AllocateOptions()
     try:
-        preview = propose(after, dictionary, budget.id, AllocateOptions(way))  # type: ignore[arg-type]
+        preview = propose(after, dictionary, budget.id, options)
     except SpecflowError as error:
         return {}, f"{budget.id} could not be allocated again: {error}"
     return {code_key(one.child.id): one.given.text for one in preview.proposals}, ""

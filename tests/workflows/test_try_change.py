@@ -8,7 +8,7 @@ from pathlib import Path
 import pytest
 
 from specflow.errors import SpecflowError
-from specflow.model.budget import Budget
+from specflow.model.budget import Allocation, Budget
 from specflow.model.budget_line import Constant, LineTolerance, Meaning
 from specflow.model.requirement import Requirement
 from specflow.workflows.allocate import AllocateOptions, accept_allocation, preview_allocation
@@ -199,3 +199,23 @@ def test_budgets_of_one_requirement_side_by_side(tmp_path: Path) -> None:
     assert [state.budget for state in states] == ["RX-2", "RX"]
     first, second = (state.limit("SYS-NF") for state in states)
     assert first is not None and second is not None and first.margin > second.margin
+
+
+def test_a_budget_is_shared_again_with_the_choices_it_was_shared_with(tmp_path: Path) -> None:
+    """What a trial says each child would get is what allocating the changed budget with the same choices gives."""
+    options = AllocateOptions(
+        "least effort", fixed=("IF",), free_gains=("LNA",), weights={"MIX": 3.0}
+    )
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        accept_allocation(store, preview_allocation(store, "RX", options), by="A. Invented")
+        link = next(one for one in store.load().all(Allocation) if one.child == "LNA-NOISE-FIGURE")
+        assert link.sharing == options.sharing
+        trial = try_changes(store, ["SYS-NF limit <= 2.8 dB"], AS_OF)
+        given = {one.child: one.proposed for one in trial.allocations if one.proposed}
+        keep_trial(store, trial, by="A. Invented", reason="tighter")
+        same = preview_allocation(store, "RX", options)
+        other = preview_allocation(store, "RX", AllocateOptions("least effort"))
+    expected = {one.child.id: one.given.text for one in same.proposals}
+    assert given and all(expected[child] == text for child, text in given.items())
+    plain = {one.child.id: one.given.text for one in other.proposals}
+    assert any(plain.get(child) != text for child, text in given.items())
