@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING, Annotated
 
 import typer
 
-from specflow.cli.console import ask, person, put, put_json, say
+from specflow.cli.console import ask, person, put, put_json, say, show_error
 from specflow.cli.options import (
     ByOption,
     DryRunOption,
@@ -14,6 +14,7 @@ from specflow.cli.options import (
     ProjectOption,
     TakeRestOption,
     YesOption,
+    judged_on,
     open_store,
 )
 from specflow.errors import ExitCode, SpecflowError
@@ -61,6 +62,12 @@ For = Annotated[
     str,
     typer.Option("--for", metavar="REQUIREMENT", help="Take the quantity of the result from a requirement."),
 ]
+Again = Annotated[
+    bool, typer.Option("--again", help="Derive again what was made of inputs that no longer stand.")
+]
+Proposed = Annotated[
+    bool, typer.Option("--proposed", help="List what laws would make of the raw tables for requirements.")
+]
 Explain = Annotated[
     str, typer.Option("--explain", metavar="LAW", help="Explain a law: formula, validity, source.")
 ]
@@ -81,6 +88,8 @@ def derive(
     polarisation: Polarisation = "",
     for_: For = "",
     explain: Explain = "",
+    again: Again = False,
+    proposed: Proposed = False,
     take_rest: TakeRestOption = False,
     yes: YesOption = False,
     dry_run: DryRunOption = False,
@@ -96,6 +105,10 @@ def derive(
 
     if explain:
         return _explain(explain)
+    if again and not law:
+        return _derive_again(project, take_rest, yes, dry_run, as_json, person(by))
+    if proposed and not law:
+        return _propose(project, as_json)
     if not law:
         return _list(as_json)
     options = DeriveOptions(
@@ -173,4 +186,51 @@ def _derive(
             if as_json:
                 told = {} if stored is None else {"stored": stored.table, "derivation": stored.derivation}
                 put_json(data | told)
+    return int(ExitCode.CLEAN)
+
+
+def _derive_again(project: str, take_rest: bool, yes: bool, dry_run: bool, as_json: bool, by: str) -> int:
+    from specflow.cli.tables import put_table, table_as_json
+    from specflow.workflows.derive_again import derive_again, preview_again
+    from specflow.workflows.derive_tables import again_table
+
+    today = judged_on("")
+    with open_store(project, read_only=dry_run) as store:
+        found = preview_again(store, today)
+        if as_json:
+            put_json(table_as_json(again_table(found)))
+        elif found:
+            put_table(again_table(found))
+        if not found:
+            say("nothing to derive again: every derived table stands on its inputs")
+            return int(ExitCode.CLEAN)
+        if dry_run or not (yes or ask("store what can be derived again?")):
+            say("nothing was stored")
+            return int(ExitCode.CLEAN)
+        stored, left = derive_again(store, today, by=by, take_rest=take_rest)
+    for one in stored:
+        say(f"{one.superseded} is superseded by {one.table}, derivation {one.derivation}")
+    for lacking in left:
+        if lacking.failure is not None:
+            show_error(lacking.failure)
+        else:
+            say(
+                f"{lacking.table.id} was not derived again: groups of rows were refused; --take-rest stores the others"
+            )
+    return int(ExitCode.FINDINGS if left else ExitCode.CLEAN)
+
+
+def _propose(project: str, as_json: bool) -> int:
+    from specflow.cli.tables import put_table, table_as_json
+    from specflow.workflows.derive_proposals import proposals
+    from specflow.workflows.derive_tables import proposals_table
+
+    with open_store(project, read_only=True) as store:
+        table = proposals_table(proposals(store))
+    if as_json:
+        put_json(table_as_json(table))
+    elif table.rows:
+        put_table(table)
+    else:
+        say("no raw table would give more evidence by a law for a requirement that lacks it")
     return int(ExitCode.CLEAN)

@@ -141,6 +141,8 @@ def off_axis(samples: Samples) -> Outcome:
 
 
 _ANGLE = "one value column over an angle (theta, azimuth ...); the other angle groups the rows"
+_PATTERNS = ("antenna_gain", "directivity", "eirp", "eirp_density")
+_ANGLES = ("theta", "azimuth", "elevation")
 CUT_LAWS: tuple[Law, ...] = (
     Law(
         "beamwidth",
@@ -149,6 +151,8 @@ CUT_LAWS: tuple[Law, ...] = (
         needs=_ANGLE,
         settings=(Setting("below", "how far below the peak", "3 dB", unit="dB"),),
         gives=("beamwidth",),
+        reads=_PATTERNS,
+        along=_ANGLES,
     ),
     Law(
         "side lobe level",
@@ -162,6 +166,8 @@ CUT_LAWS: tuple[Law, ...] = (
             ),
         ),
         gives=("side_lobe_level", "side_lobe_suppression"),
+        reads=_PATTERNS,
+        along=_ANGLES,
     ),
     Law(
         "off axis",

@@ -11,7 +11,6 @@ from specflow.conditions.words import range_words, value_words
 from specflow.derive.law import Law, Outcome, Setting, single
 from specflow.derive.samples import Samples, figure
 from specflow.errors import CalculationError
-from specflow.units import format_value
 
 Floats = NDArray[np.float64]
 
@@ -204,7 +203,8 @@ EDGE_LAWS: tuple[Law, ...] = (
         "the width between the edges x dB below the peak",
         bandwidth,
         settings=_BANDWIDTH,
-        gives=("bandwidth_3db", "beamwidth"),
+        gives=("bandwidth_3db",),
+        reads=("gain", "transmission_magnitude"),
     ),
     Law(
         "centre",
@@ -212,6 +212,7 @@ EDGE_LAWS: tuple[Law, ...] = (
         centre,
         settings=_BANDWIDTH,
         gives=("center_frequency",),
+        reads=("gain", "transmission_magnitude"),
     ),
     Law(
         "crossing",

@@ -82,7 +82,8 @@ def single(
 class Law:
     """One entry. ``roles`` are the value columns it reads.
 
-    ``needs`` says in a sentence what must be stored. ``gives``: parameters it usually gives (for proposals).
+    ``needs`` says in a sentence what must be stored. ``gives``: parameters it usually gives, of readings
+    of the parameters ``reads``, over one of the conditions ``along`` (for proposals).
     ``takes_bounds``: readings that are intervals ("< -90") may enter. ``takes_repeats``: several readings at one
     axis value may. ``statistic``: what the result is called where it is of the same parameter as the readings ("" where
     it is a reading like the others; "{of}" takes a setting). ``brackets``: the law interpolates, so the reading beyond
@@ -98,6 +99,8 @@ class Law:
     roles: tuple[str, ...] = ("value",)
     settings: tuple[Setting, ...] = ()
     gives: tuple[str, ...] = ()
+    reads: tuple[str, ...] = ()
+    along: tuple[str, ...] = ("frequency",)
     takes_bounds: bool = False
     takes_repeats: bool = False
     brackets: bool = False

@@ -72,6 +72,8 @@ PHASE_NOISE_LAWS: tuple[Law, ...] = (
         phase_error,
         needs=_NEEDS,
         gives=("integrated_phase_error",),
+        reads=("phase_noise",),
+        along=("offset",),
         brackets=True,
     ),
     Law(
@@ -80,6 +82,8 @@ PHASE_NOISE_LAWS: tuple[Law, ...] = (
         phase_noise_ratio,
         needs=_NEEDS,
         gives=("integrated_phase_noise_relative",),
+        reads=("phase_noise",),
+        along=("offset",),
         brackets=True,
     ),
     Law(
@@ -89,6 +93,8 @@ PHASE_NOISE_LAWS: tuple[Law, ...] = (
         needs=_NEEDS,
         settings=(Setting("carrier", "the carrier frequency, as '10 GHz'", unit="Hz"),),
         gives=("jitter",),
+        reads=("phase_noise",),
+        along=("offset",),
         brackets=True,
     ),
 )

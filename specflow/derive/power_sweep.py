@@ -175,6 +175,8 @@ SWEEP_LAWS: tuple[Law, ...] = (
         roles=("output",),
         settings=_LINEAR,
         gives=("gain",),
+        reads=("output_power",),
+        along=("input_level",),
     ),
     Law(
         "compression point",
@@ -188,6 +190,8 @@ SWEEP_LAWS: tuple[Law, ...] = (
             Setting("compression", "how far the gain has fallen", "1 dB", unit="dB"),
         ),
         gives=("ip1db", "op1db"),
+        reads=("output_power", "gain"),
+        along=("input_level",),
     ),
     Law(
         "saturated power",
@@ -200,6 +204,8 @@ SWEEP_LAWS: tuple[Law, ...] = (
             Setting("rise", "how much the output may still rise over it", "0.2 dB", unit="dB"),
         ),
         gives=("saturated_power",),
+        reads=("output_power",),
+        along=("input_level",),
     ),
     Law(
         "efficiency at level",

@@ -325,6 +325,7 @@ SPHERE_LAWS: tuple[Law, ...] = (
         needs=_NEEDS,
         settings=_GRID,
         gives=("trp",),
+        reads=("eirp",),
     ),
     Law(
         "directivity",
@@ -334,6 +335,7 @@ SPHERE_LAWS: tuple[Law, ...] = (
         needs=_NEEDS,
         settings=_GRID,
         gives=("directivity",),
+        reads=("eirp", "antenna_gain"),
     ),
     Law(
         "spherical percentile",
@@ -347,6 +349,7 @@ SPHERE_LAWS: tuple[Law, ...] = (
             *_GRID,
         ),
         gives=("eirp_spherical_coverage", "eis_spherical_coverage"),
+        reads=("eirp", "eis"),
         statistic="percentile",
     ),
     Law(
@@ -369,6 +372,7 @@ SPHERE_LAWS: tuple[Law, ...] = (
             Setting("turn", "commanded azimuthal angle, as '0 deg'", unit="deg"),
         ),
         gives=("pointing_error",),
+        reads=("eirp", "antenna_gain"),
     ),
     Law(
         "cross polarisation",

@@ -11,6 +11,8 @@ from specflow.derive.table import covered_words
 from specflow.model.report import CellTone, ReportCell, ReportColumn, ReportRow, ReportTable
 from specflow.units import format_value
 from specflow.workflows.derive import DerivePreview
+from specflow.workflows.derive_again import Again
+from specflow.workflows.derive_proposals import Proposal
 
 
 def preview_table(preview: DerivePreview) -> ReportTable:
@@ -102,6 +104,34 @@ def preview_as_json(preview: DerivePreview) -> dict[str, Any]:
 
 def _finite(value: float) -> float | None:
     return value if abs(value) < float("inf") else None
+
+
+def again_table(found: Sequence[Again]) -> ReportTable:
+    """Return what is to be derived again, why, and what it gives now."""
+    rows = []
+    for one in found:
+        if one.preview is not None:
+            values = "; ".join(
+                _figure(result.value, result.high, one.preview.derived.unit)
+                for result in one.preview.derived.results[:4]
+            )
+            refused = len(one.preview.derived.refused)
+            says = values + (f"; {refused} groups refused" if refused else "")
+        else:
+            says = "" if one.failure is None else f"{one.failure.message}; {one.failure.hint}"
+        tone = CellTone.PLAIN if one.can_be_stored else CellTone.BAD
+        rows.append(_row(one.table.id, (one.table.id, one.derivation.words, one.why, says), tone))
+    return _table("again", "To derive again", "", ("Table", "Derivation", "Why", "Gives now"), rows)
+
+
+def proposals_table(found: Sequence[Proposal]) -> ReportTable:
+    """Return what laws would make of raw tables, with the command that does it."""
+    rows = [
+        _row(one.requirement.id, (one.requirement.id, one.requirement.limit.text, one.why, one.command))
+        for one in found
+    ]
+    intro = "Requirements that lack evidence, raw tables from which a law would give it, and how to say it."
+    return _table("proposed", "Proposed derivations", intro, ("Requirement", "Limit", "From", "Say"), rows)
 
 
 def laws_table() -> ReportTable:
