@@ -2,8 +2,9 @@
 
 The row is the line number of the file, so the headers stand in row 0, above the first line. Nested objects are
 flattened with dots. ``{"value": 1.2, "unit": "dB"}`` is one quantity: where all lines agree in the unit the header is
-``gain (dB)``, else ``gain.value`` and ``gain.unit`` are columns of their own. What cannot be one value of one key (a
-broken line, a key that stands twice) is an error cell in its place, with a note.
+``gain (dB)``. Where they differ in the unit of one quantity, as records of one quantity each do, the units are the
+column ``unit``; where they differ in several, each cell keeps its own: ``1.2 dB``. What cannot be one value of one key
+(a broken line, a key that stands twice) is an error cell in its place, with a note.
 """
 
 from __future__ import annotations
@@ -23,6 +24,7 @@ from specflow.importers.readers.stores import Value
 MAX_CELLS = 16_000_000
 MAX_KEYS = 2_000
 
+_UNIT_NAMES = ("unit", "units")
 _EXACT = 2**53
 _MOST_NAMED = 5
 _TWICE = OddCell(OddKind.ERROR, "the key stands twice in this line")
@@ -57,6 +59,7 @@ def read_json_lines(source: Source) -> list[Grid]:
         )
     keys = list(dict.fromkeys(key for line in sound for key in (*line.cells, *line.twice)))
     _check_size(source, keys, len(lines))
+    doubts = _notes(lines, keys)
     headers = _headers(keys, sound)
     grid_rows: list[list[Value]] = [list(headers.values())]
     grid_rows += [[] if line is None else [line.cells.get(key, "") for key in headers] for line in lines]
@@ -67,7 +70,7 @@ def read_json_lines(source: Source) -> list[Grid]:
             file=source.name,
             first_row=0,
             odd=_marks(lines, list(headers)).cells(),
-            notes=(*notes, *_notes(lines, keys)),
+            notes=(*notes, *doubts),
         )
     ]
 
@@ -124,22 +127,49 @@ def _check_size(source: Source, keys: list[str], lines: int) -> None:
 
 
 def _headers(keys: list[str], lines: list[_Line]) -> dict[str, str]:
-    """Key -> header, without the units that went into a header."""
+    """Key -> header; keys of units that went elsewhere are left out."""
     headers = {key: key for key in keys}
-    for key in keys:
-        base, _, last = key.rpartition(".")
-        unit = next((f"{base}.{name}" for name in ("unit", "units") if f"{base}.{name}" in headers), "")
-        if last != "value" or not base or not unit or base in headers:
-            continue
+    differ = []
+    for key, unit in _quantities(keys, lines).items():
+        base = key.removesuffix(".value")
         units = {
-            line.cells.get(unit, "") for line in lines if line.cells.get(key, "") != "" or key in line.twice
+            str(line.cells.get(unit, "")).strip() for line in lines if _has(line, key) or _has(line, unit)
         }
-        units |= {line.cells[unit] for line in lines if line.cells.get(unit, "") != ""}
-        alone = next(iter(units)) if len(units) == 1 else ""
-        if isinstance(alone, str) and alone.strip() and not any(unit in line.twice for line in lines):
-            headers[key] = f"{base} ({alone.strip()})"
+        if len(units) == 1:
             del headers[unit]
+            headers[key] = f"{base} ({units.pop()})".removesuffix(" ()")
+        else:
+            headers[key] = base
+            differ.append((key, unit))
+    if len(differ) == 1 and not any(name in headers for name in _UNIT_NAMES):
+        headers[differ[0][1]] = "unit"
+        return headers
+    for key, unit in differ:
+        del headers[unit]
+        for line in lines:
+            _join_unit(line, key, unit)
     return headers
+
+
+def _quantities(keys: list[str], lines: list[_Line]) -> dict[str, str]:
+    """Key of a value -> key of its unit, where nothing else has that name."""
+    found = {}
+    for key in keys:
+        base = key.removesuffix(".value")
+        unit = next((f"{base}.{name}" for name in _UNIT_NAMES if f"{base}.{name}" in keys), "")
+        if base != key and unit and base not in keys and not any(unit in line.twice for line in lines):
+            found[key] = unit
+    return found
+
+
+def _has(line: _Line, key: str) -> bool:
+    return line.cells.get(key, "") != "" or key in line.twice
+
+
+def _join_unit(line: _Line, key: str, unit: str) -> None:
+    value, said = line.cells.get(key, ""), str(line.cells.get(unit, "")).strip()
+    if said and value != "" and not isinstance(value, bool):
+        line.cells[key] = f"{value} {said}"
 
 
 def _marks(lines: list[_Line | None], keys: list[str]) -> OddMarks:

@@ -45,13 +45,35 @@ def test_a_unit_that_all_lines_agree_in_goes_into_the_header(tmp_path: Path) -> 
 
 
 @pytest.mark.parametrize(
-    "other", ['{"value": 3, "unit": "dBm"}', '{"value": 3}', '{"value": 3, "unit": null}']
+    ("other", "cells"),
+    [
+        ('{"value": 3, "unit": "dBm"}', [3.0, "dBm"]),
+        ('{"value": 3}', [3.0, ""]),
+        ('{"value": 3, "unit": null}', [3.0, ""]),
+        ('{"unit": "dBm"}', ["", "dBm"]),
+    ],
 )
-def test_units_that_differ_or_are_missing_stay_beside_their_values(tmp_path: Path, other: str) -> None:
-    lines = ('{"P": {"value": 1, "unit": "W"}}', f'{{"P": {other}}}')
+def test_units_of_one_quantity_that_differ_are_a_column(
+    tmp_path: Path, other: str, cells: list[object]
+) -> None:
+    lines = ('{"what": "P", "result": {"value": 1.25, "unit": "W"}}', f'{{"what": "Q", "result": {other}}}')
     grid = grid_of(tmp_path / "a.ndjson", *lines)
-    assert grid.rows[0] == ["P.value", "P.unit"]
-    assert grid.rows[1] == [1.0, "W"]
+    assert grid.rows == [["what", "result", "unit"], ["P", 1.25, "W"], ["Q", *cells]]
+
+
+def test_units_of_several_quantities_that_differ_stay_in_their_cells(tmp_path: Path) -> None:
+    lines = (
+        '{"P": {"value": 1.25, "unit": "W"}, "G": {"value": 20, "units": "dB"}}',
+        '{"P": {"value": 31, "unit": "dBm"}, "G": {"value": "OL"}}',
+    )
+    grid = grid_of(tmp_path / "a.ndjson", *lines)
+    assert grid.rows == [["P", "G"], ["1.25 W", "20.0 dB"], ["31.0 dBm", "OL"]]
+
+
+def test_a_value_in_some_lines_and_a_quantity_in_others_are_two_columns(tmp_path: Path) -> None:
+    grid = grid_of(tmp_path / "a.ndjson", '{"P": {"value": 1.25, "unit": "W"}}', '{"P": 3}')
+    assert grid.rows == [["P.value", "P.unit", "P"], [1.25, "W", ""], ["", "", 3.0]]
+    assert grid.notes == ("'P' is a value in some lines and an object in others",)
 
 
 def test_numbers_are_exact(tmp_path: Path) -> None:
