@@ -5,6 +5,8 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 
+import numpy as np
+
 from specflow.conditions import find_dimension, is_unlocated_temperature
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.header_text import header_key, read_header
@@ -89,7 +91,7 @@ def _are_two(left: Grid, right: Grid, context: Context) -> bool | Question:
         return True
     if not _begins_with_condition(other, context):
         return False
-    if _extent(one) != _extent(other):
+    if _differ_in_length(one, other):
         return True
     if not _dimensions(one) or not _dimensions(other) or not _holds_values(other, context):
         return False
@@ -137,6 +139,12 @@ def _holds_values(table: FoundTable, context: Context) -> bool:
 
 def _extent(table: FoundTable) -> tuple[int, int]:
     return (int(table.rows[0]), int(table.rows[-1])) if len(table.rows) else (0, 0)
+
+
+def _differ_in_length(one: FoundTable, other: FoundTable) -> bool:
+    """Whether most rows of the longer table have none of the other beside them."""
+    longer, shorter = sorted((one.rows, other.rows), key=len, reverse=True)
+    return 2 * len(np.setdiff1d(longer, shorter)) > len(longer)
 
 
 def _question(one: FoundTable, other: FoundTable) -> Question:

@@ -5,6 +5,7 @@ Each quantity becomes a table of its own, made of its rows; every cell keeps its
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from dataclasses import replace
 
 import numpy as np
@@ -73,6 +74,8 @@ def long_parts(
         parts.append(
             (replace(part, facts=(*part.facts, *common)), _settled(read_as, long, part, values, unit))
         )
+    if wanted and not parts:
+        doubts.append(_no_rows(table, groups, names))
     if parts:
         first = replace(parts[0][0], doubts=(*parts[0][0].doubts, *doubts), notes=(*parts[0][0].notes, *left))
         parts[0] = (first, parts[0][1])
@@ -194,6 +197,12 @@ def _no_column(table: FoundTable, long: LongMapping) -> Question:
     named = ", ".join(filter(None, (long.parameter, long.value, long.unit)))
     what = f"the mapping reads the long form from the columns {named}; one of them is not there"
     return Question("", table.place, what, f"the headers are {headers}")
+
+
+def _no_rows(table: FoundTable, groups: Iterable[tuple[str, str]], names: HeaderCell) -> Question:
+    known = "; ".join(dict.fromkeys(name for name, _ in groups))
+    what = "no row has one of the names that the mapping gives with only"
+    return Question(names.text, names.cell, what, f"the names are: {known[:300]}")
 
 
 def _nameless(table: FoundTable, rows: list[int], names: HeaderCell) -> Question:

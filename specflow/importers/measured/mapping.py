@@ -16,6 +16,7 @@ from specflow.importers.measured.area import read_area
 from specflow.importers.measured.mapping_parts import (
     AxisMapping,
     ColumnMapping,
+    DeriveMapping,
     LayoutMapping,
     LongMapping,
     MatrixMapping,
@@ -36,7 +37,7 @@ __all__ = [
 
 FORMAT = 1
 
-_PARTS = ("stated", "columns", "pivots", "long", "matrix")
+_PARTS = ("stated", "columns", "pivots", "long", "matrix", "derive")
 
 ROLES = tuple(role.value for role in Role if role not in (Role.UNRESOLVED, Role.PIVOT, Role.STATED))
 
@@ -70,11 +71,18 @@ def _layout(data: dict[str, Any], where: str) -> LayoutMapping:
     single = data.pop("pivot", [])
     data["pivot"] = single if isinstance(single, list) else [single]
     pivots = [_pivot(entry, where) for entry in _entries_of(data, "pivot", where)]
+    derive = [_derive(entry, where) for entry in _entries_of(data, "derive", where)]
     long, matrix = _part_of(data, "long", where), _part_of(data, "matrix", where)
     stated = {key: str(value) for key, value in _part_of(data, "stated", where).items()}
     stated |= {key: str(data.pop(key)) for key in _STATED if key in data}
-    _check(LayoutMapping, data, where, but=("columns", "stated", "pivots", "long", "matrix"))
+    _check(LayoutMapping, data, where, but=("columns", "stated", "pivots", "long", "matrix", "derive"))
     _check_area(data, where)
+    if data.get("others", Role.NOT_READ) != Role.NOT_READ:
+        raise FileError(
+            f"others = {data['others']!r} is not what belongs there",
+            where=where,
+            hint='write others = "not read"',
+        )
     return LayoutMapping(
         **data,
         stated=stated,
@@ -82,7 +90,17 @@ def _layout(data: dict[str, Any], where: str) -> LayoutMapping:
         pivots=tuple(pivots),
         long=_long(long, where) if long else None,
         matrix=_matrix(matrix, where) if matrix else None,
+        derive=tuple(derive),
     )
+
+
+def _derive(data: dict[str, Any], where: str) -> DeriveMapping:
+    where = f"{where}, derive"
+    if isinstance(data.get("settings"), dict):
+        data["settings"] = {key: str(value) for key, value in data["settings"].items()}
+    _check(DeriveMapping, data, where)
+    _demand(data, ("law",), where)
+    return DeriveMapping(**data)
 
 
 def _check_area(data: Mapping[str, Any], where: str) -> None:
@@ -223,6 +241,8 @@ def write_mapping(mapping: LayoutMapping, reasons: Mapping[str, str] | None = No
     mark = "[table.pivot]" if len(mapping.pivots) == 1 else "[[table.pivot]]"
     for pivot in mapping.pivots:
         lines += ["", mark, *_entries(pivot)]
+    for derived in mapping.derive:
+        lines += ["", "[[table.derive]]", *_entries(derived)]
     for column in mapping.columns:
         lines.append("")
         reason = (reasons or {}).get(f"{column.column}:{column.header}", "")

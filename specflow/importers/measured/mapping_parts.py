@@ -50,6 +50,27 @@ class ColumnMapping:
 
 
 @dataclass(frozen=True, slots=True)
+class DeriveMapping:
+    """A law that is applied to the table once it is read, as ``specflow derive`` takes it.
+
+    ``values`` are value columns by name, or "ROLE=NAME"; ``over`` is the range, ``where`` the rows, ``settings`` those
+    of the law. ``gives``, ``plane``, ``statistic`` and ``polarisation`` say of what the result is, or ``requirement``
+    does.
+    """
+
+    law: str
+    values: Sequence[str] = ()
+    over: str = ""
+    where: Sequence[str] = ()
+    settings: Mapping[str, str] = field(default_factory=dict)
+    gives: str = ""
+    plane: str = ""
+    statistic: str = ""
+    polarisation: str = ""
+    requirement: str = ""
+
+
+@dataclass(frozen=True, slots=True)
 class PivotMapping:
     """Columns that are one quantity at several conditions.
 
@@ -133,7 +154,7 @@ class LayoutMapping:
     ``area`` ("K6:L10", or "A137:B" to the end of the sheet) says where the table stands, ``alone`` that nothing else of
     its sheet is read; its first ``header_rows`` rows
     are headers (0: none, columns go by their letters). ``turned``: the headers stand in the first column.
-    ``skip_rows`` are rows that are not read, ``stop_at`` the words at which the table has ended. ``when`` are facts
+    ``others = "not read"``: columns that no entry names are not read. ``skip_rows`` are rows that are not read, ``stop_at`` the words at which the table has ended. ``when`` are facts
     that must be stated above the table for this mapping to hold.
     """
 
@@ -143,6 +164,7 @@ class LayoutMapping:
     area: str = ""
     alone: bool = False
     skip: bool = False
+    others: str = ""
     turned: bool = False
     header_rows: int = 1
     skip_rows: Sequence[int] = ()
@@ -156,6 +178,7 @@ class LayoutMapping:
     pivots: Sequence[PivotMapping] = ()
     long: LongMapping | None = None
     matrix: MatrixMapping | None = None
+    derive: Sequence[DeriveMapping] = ()
 
     @property
     def pivot(self) -> PivotMapping | None:

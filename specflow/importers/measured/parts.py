@@ -10,12 +10,14 @@ from specflow.conditions import find_dimension
 from specflow.importers.measured.at_headers import pivots_of_headers
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.groups import group_parts
+from specflow.importers.measured.header_cells import HeaderCell
 from specflow.importers.measured.header_text import read_header
 from specflow.importers.measured.long_form import find_long, long_parts
-from specflow.importers.measured.mapping_parts import LayoutMapping
+from specflow.importers.measured.mapping_parts import ColumnMapping, LayoutMapping
 from specflow.importers.measured.place_facts import stated_here
 from specflow.importers.measured.placed import pivot_of
 from specflow.importers.measured.quantity_text import name_quantity
+from specflow.importers.measured.result import Role
 from specflow.importers.measured.roles import role_of_words, uncertainty_of
 from specflow.importers.measured.tables import FoundTable
 
@@ -27,11 +29,14 @@ def parts_of(table: FoundTable, mapping: LayoutMapping, context: Context) -> lis
     read_as = replace(mapping, stated=stated_here(mapping))
     if mapping.skip_rows:
         table = _without_rows(table, mapping)
+    table = _with_lettered(table, mapping)
     if mapping.matrix is not None:
         return [(table, replace(read_as, pivots=(pivot_of(mapping.matrix),)))]
     long = mapping.long or find_long(table, mapping, context)
     if long is not None:
         return long_parts(table, long, read_as, context)
+    if mapping.others:
+        read_as = _others_unread(table, read_as)
     pivots = mapping.pivots or (
         () if _is_settled(mapping) else table.pivots or pivots_of_headers(table, context)
     )
@@ -47,6 +52,35 @@ def parts_of(table: FoundTable, mapping: LayoutMapping, context: Context) -> lis
 def _is_settled(mapping: LayoutMapping) -> bool:
     """Whether a person said what the columns are; what was recognised of them then does not count."""
     return any(entry.role or entry.parameter or entry.dimension for entry in mapping.columns)
+
+
+def _with_lettered(table: FoundTable, mapping: LayoutMapping) -> FoundTable:
+    """Take columns without a header among the headers, where the mapping says by their letters what they are."""
+    meant = {
+        column
+        for column in table.unnamed
+        if (entry := mapping.column("", table.grid.column_name(column))) is not None
+        and (entry.parameter or entry.dimension or entry.role not in ("", Role.NOT_READ))
+    }
+    if not meant:
+        return table
+    row, turned = table.header_row, table.grid.turned
+    lettered = [HeaderCell(column, row, f"column #{column}", turned=turned) for column in sorted(meant)]
+    headers = tuple(sorted((*table.headers, *lettered), key=lambda header: header.column))
+    return replace(table, headers=headers, unnamed=tuple(one for one in table.unnamed if one not in meant))
+
+
+def _others_unread(table: FoundTable, read_as: LayoutMapping) -> LayoutMapping:
+    """Mark the columns that the mapping says nothing of as not read."""
+    letters = [(header.text, header.letter) for header in table.headers]
+    letters += [("", table.grid.column_name(column)) for column in table.unnamed]
+    unread = [
+        ColumnMapping(header=text, column=letter, role=Role.NOT_READ.value)
+        for text, letter in letters
+        if read_as.column(text, letter) is None
+        and not any(pivot.is_about(text, letter) for pivot in read_as.pivots)
+    ]
+    return replace(read_as, columns=(*read_as.columns, *unread))
 
 
 def _without_rows(table: FoundTable, mapping: LayoutMapping) -> FoundTable:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Sequence
+from collections.abc import Collection, Sequence
 
 import numpy as np
 
@@ -33,7 +33,9 @@ _SUMMARY = frozenset(
         "sd",
         "sigma",
         "total",
+        "totals",
         "sum",
+        "summe",
         "subtotal",
         "worst-case",
         "spread",
@@ -52,12 +54,13 @@ _SUMMARY = frozenset(
         "upper",
         "lower",
         "tolerance",
-        "typ",
-        "typical",
-        "nom",
-        "nominal",
     ]
 )
+#: Of these, the words of a row that is worked out from the others: it is left out and said, and rejects nothing.
+_SUMS_UP = frozenset(
+    ("mean", "average", "avg", "max", "maximum", "min", "minimum", "median", "std", "stdev", "sd", "sigma", "total",
+     "totals", "sum", "subtotal", "count", "spread", "range", "mittelwert", "summe")
+)  # fmt: skip
 _SUMMARY_PHRASES = (
     "std dev",
     "standard deviation",
@@ -88,11 +91,40 @@ def select_rows(
     if not mapping.keep_summary_rows:
         summary = _summary_rows(table, meanings, rows)
         if summary:
+            modes = {one.column for one in meanings if one.role is Role.CONDITION and one.is_text}
+            certain = [row for row in summary if _is_certain(table, row, modes)]
+            if certain:
+                notes.append(_summary_note(table, certain))
+            marked = np.isin(rows, certain)
+            rows = rows[~marked]
             marked = np.isin(rows, summary)
             reason = "a summary, limit or note, no reading (keep_summary_rows = true in a mapping reads it)"
             _reject(table, rows[marked], reason, rejects)
             rows = rows[~marked]
     return rows, notes
+
+
+def _is_certain(table: FoundTable, row: int, modes: Collection[int]) -> bool:
+    """Whether the label of a row says that it sums up the others ("Mean", "Subtotal"), and cannot be a mode "Max"."""
+    column, first = next(
+        (place, value) for place, value in enumerate(table.grid.row(row), start=1) if not is_blank(value)
+    )
+    plain = re.sub(r"[:.\s]+", " ", str(first).casefold()).strip()
+    return column not in modes and (
+        plain in _SUMS_UP or plain in ("std dev", "standard deviation", "sub total")
+    )
+
+
+def _summary_note(table: FoundTable, rows: Sequence[int]) -> str:
+    words = dict.fromkeys(
+        cell_text(next(value for value in table.grid.row(row) if not is_blank(value))).strip() for row in rows
+    )
+    numbers = ", ".join(map(str, rows[:6])) + (" ..." if len(rows) > 6 else "")
+    line = "column" if table.grid.turned else "row"
+    return (
+        f"left out as sums of the others ({', '.join(list(words)[:6])}): {line} {numbers}; "
+        "keep_summary_rows = true in a mapping reads them"
+    )
 
 
 def _reject(table: FoundTable, rows: Rows, reason: str, rejects: Rejects) -> None:

@@ -117,17 +117,26 @@ def test_a_summary_below_a_blank_row_is_rejected_and_signatures_are_not(tmp_path
     assert low(table, "Gain") == [20] and set(rejected(table)) == {"A4"}
 
 
-def test_summary_rows_are_rejected_and_a_mode_called_max_is_not(tmp_path: Path) -> None:
+def test_rows_that_sum_up_are_left_out_and_a_mode_called_max_is_not(tmp_path: Path) -> None:
     rows = [
         ["Mode", "f (GHz)", "Gain (dB)"],
         ["Max", 27.5, 20],
         ["Min", 27.5, 19],
-        ["Mean", None, 19.5],
         ["Limit", None, 18],
     ]
     table = taken(one_table(book(tmp_path / "a.xlsx", rows)))
     assert low(table, "Gain") == [20, 19]
-    assert set(rejected(table)) == {"A4", "A5"} and table.rejected_cells == 2
+    assert set(rejected(table)) == {"A4"} and table.rejected_cells == 1
+    rows = [["f (GHz)", "Gain (dB)"], [27.5, 20], [28, 19], ["Mean", 19.5], ["Worst case", 19]]
+    table = taken(one_table(book(tmp_path / "b.xlsx", rows)))
+    assert low(table, "Gain") == [20, 19] and set(rejected(table)) == {"A5"}
+    assert any("left out as sums of the others (Mean): row 4" in note for note in table.notes)
+
+
+def test_a_mode_of_a_table_without_other_conditions_is_rejected_and_not_passed_over(tmp_path: Path) -> None:
+    rows = [["Mode", "Gain (dB)"], ["Low", 20], ["Max", 19]]
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows)))
+    assert low(table, "Gain") == [20] and set(rejected(table)) == {"A3"}
 
 
 def test_hidden_rows_are_left_out_unless_asked_for(tmp_path: Path) -> None:
