@@ -30,6 +30,14 @@ def attach_folders(
     from specflow.workflows.attach_folder import folder_job
 
     job = folder_job(paths, options, decision)
+    if not job.found.files:
+        for one in job.passed_over:
+            say(f"passed over {one.path}: {one.reason}")
+        raise SpecflowError(
+            "a folder without measurement files",
+            where=", ".join(map(str, paths)),
+            hint="name one workbook or text file, or a folder that has some",
+        )
     with open_store(project) as store:
         if yes and not dry_run:
             return _end(_run(store, job), as_json=as_json)
@@ -91,7 +99,7 @@ def _end(run: FolderRun, *, as_json: bool, dry_run: bool = False) -> int:
         say(note)
     for one in run.of(Outcome.REJECTED):
         if one.remedy:
-            say(f"{one.path.name}: {one.remedy}")
+            say(f"{one.path.name}: {one.remedy.removeprefix(f'{one.path.name}: ')}")
     say(f"{run.counts()}{'; nothing was stored' if dry_run else ''}")
     if run.interrupted:
         say(f"interrupted at {run.interrupted}; the files above are whole, run it again to go on")
@@ -99,6 +107,4 @@ def _end(run: FolderRun, *, as_json: bool, dry_run: bool = False) -> int:
     if run.stopped is not None:
         show_error(run.stopped)
         return int(run.stopped.exit_code)
-    if not run.total:
-        raise SpecflowError("the folder has no measurement file", hint="see what was passed over, and why")
     return int(ExitCode.BAD_INPUT if run.of(Outcome.REJECTED) else ExitCode.CLEAN)

@@ -55,7 +55,6 @@ class FileOutcome:
     words: str = ""
     where: str = ""
     remedy: str = ""
-    layouts: frozenset[str] = frozenset()
 
 
 @dataclass
@@ -85,13 +84,17 @@ class FolderRun:
 
 @dataclass(frozen=True, slots=True)
 class FolderJob:
-    """What is to be done: the files with their mappings, what the person says and decides."""
+    """What is to be done: the files with their mappings, what the person says and decides.
+
+    ``layouts`` are those that mapping files settle, with their file; ``met`` collects those that were found.
+    """
 
     found: FoundFiles
     options: AttachOptions
     decision: Decision
     passed_over: Sequence[PassedOver] = ()
     layouts: Mapping[str, str] = field(default_factory=dict)
+    met: set[str] = field(default_factory=set)
 
 
 def folder_job(paths: Sequence[Path], options: AttachOptions, decision: Decision) -> FolderJob:
@@ -136,10 +139,8 @@ def attach_folder(
             run.files.append(_rejected(path, error))
             break
         run.files.append(_with_copy_told(outcome, sources))
-        sources.setdefault(outcome.sha256, path)
-        sources.update(
-            (f"table {table}", path) for table in outcome.tables if outcome.outcome is Outcome.ACCEPTED
-        )
+        for key in (outcome.sha256, *(f"table {table}" for table in outcome.tables)):
+            sources.setdefault(key, path)
     if not run.interrupted and run.stopped is None and only is None:
         run.notes += _idle(job, run)
     return run
@@ -176,8 +177,8 @@ def _attach_once(store: ProjectStore, path: Path, job: FolderJob, expected: str)
         raise FileError(
             "the file has changed since it was looked at", where=path.name, hint="look at the summary again"
         )
-    layouts = frozenset(table.layout_key for table in preview.measurements.tables if table.mapping_from)
-    base = FileOutcome(path, Outcome.UNCHANGED, sha256, tuple(preview.known.values()), layouts=layouts)
+    job.met.update(table.layout_key for table in preview.measurements.tables)
+    base = FileOutcome(path, Outcome.UNCHANGED, sha256, tuple(preview.known.values()))
     keeps = job.decision.keep or preview.snapshot.project.policy.keep_copies
     if _has_nothing_new(preview, job.decision) and not keeps:
         return replace(base, words=_known_words(preview))
@@ -257,11 +258,10 @@ def _stored_all_the_same(store: ProjectStore, revision: int, path: Path) -> list
 
 def _idle(job: FolderJob, run: FolderRun) -> list[str]:
     """Say which layouts of the mapping files no file has, and which tables nothing superseded."""
-    met = frozenset().union(*(one.layouts for one in run.files)) if run.files else frozenset()
     notes = [
         f"{name} settles the layout {key}, which no table of these files has"
         for key, name in job.layouts.items()
-        if key not in met
+        if key not in job.met
     ]
     replaced = {code_key(code) for one in run.files for code in one.superseded}
     notes += [

@@ -54,6 +54,7 @@ class _Numbers:
     low: Floats
     high: Floats
     standard: bool = False
+    is_condition: bool = False
 
 
 def differing_cells(
@@ -68,7 +69,7 @@ def differing_cells(
         found = _unequal(one, other)
         count += len(found)
         listed += [_told(one, other, key) for key in found[: MOST_LISTED - len(listed)].tolist()]
-        if other is not None and not one.standard:
+        if other is not None and not one.standard and not one.is_condition:
             here = other.keys[~np.isnan(other.low)]
             added += int(np.count_nonzero(~np.isin(here, one.keys[~np.isnan(one.low)])))
     said = (*_words(before, stored, read), *_stated(before, stored, read), *_meanings(before, after))
@@ -95,10 +96,9 @@ def _numbers(table: EvidenceTable, columns: EvidenceColumns) -> Iterator[_Number
             continue
         numbers = columns.conditions.numeric[condition.dimension]
         unit = columns.conditions.units.get(condition.dimension, "")
+        keys, name = rows + condition.column, f"condition {condition.dimension}"
         what = condition.header or condition.dimension
-        yield _Numbers(
-            f"condition {condition.dimension}", what, unit, rows + condition.column, numbers, numbers
-        )
+        yield _Numbers(name, what, unit, keys, numbers, numbers, is_condition=True)
 
 
 def _column_numbers(letters: TextColumn) -> Keys:

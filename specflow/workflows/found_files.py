@@ -110,7 +110,10 @@ def _below(folder: Path, found: FoundFiles) -> Iterator[Path]:
 
 @dataclass(frozen=True, slots=True)
 class Whereabouts:
-    """Where a stored file is now: ``same`` has its bytes, ``other`` its name and other bytes; both None: nowhere."""
+    """Where a stored file is now: ``same`` has its bytes, ``other`` its name and other bytes; both None: nowhere.
+
+    Both: the bytes lie there under another name.
+    """
 
     same: Path | None = None
     other: Path | None = None
@@ -135,11 +138,12 @@ class FileSearch:
         """Return where a file is, the one under its own name first."""
         named = self._by_name.get(file.name, [])
         sized = self._by_size.get(file.size, [])
+        near = sorted(named, key=lambda path: not _ends_as(path, file.path))
+        other = near[0] if near else None
         for path in sorted(sized, key=lambda path: (path.name != file.name, not _ends_as(path, file.path))):
             if self._hash(path) == file.sha256:
-                return Whereabouts(same=path)
-        near = sorted(named, key=lambda path: not _ends_as(path, file.path))
-        return Whereabouts(other=near[0] if near else None)
+                return Whereabouts(path, other if path.name != file.name else None)
+        return Whereabouts(None, other)
 
     def unknown(self, paths: Iterable[Path], files: Sequence[EvidenceFile]) -> list[Path]:
         """Return those paths that have neither the name nor the bytes of one of the files."""

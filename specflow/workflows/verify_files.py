@@ -146,7 +146,10 @@ def _check(
         checks = reader.check(tables, found.same)
         state = FileState.UNCHANGED if found.same.name == file.name else FileState.MOVED
         state = state if all(check.is_same for check in checks) else FileState.READ_OTHERWISE
-        return FileCheck(file, state, shown_path(found.same), checks)
+        where = shown_path(found.same)
+        if found.other is not None:
+            where += f" ({shown_path(found.other)} has other bytes)"
+        return FileCheck(file, state, where, checks)
     if file.kept:
         return _check_copy(store, reader, file, tables, found.other)
     if found.other is not None:

@@ -9,6 +9,7 @@ from typing import Any
 import pytest
 
 from specflow.cli import attach as attach_command
+from specflow.cli import attach_folder as folder_command
 from specflow.errors import ExitCode
 from specflow.store import create_project, open_project
 from tests.builders import a_project, adding
@@ -141,3 +142,76 @@ def test_json_has_all_that_the_tables_show(command: Command, project: Path, tmp_
     assert json.loads(command("attach", path, "--json", "--dry-run").out)["unchanged"]
     failed = json.loads(command("attach", tmp_path / "none.xlsx", "--json").out)
     assert failed["error"] and failed["hint"]
+
+
+def test_a_folder_gives_one_summary(command: Command, project: Path, tmp_path: Path) -> None:
+    folder = tmp_path / "results"
+    folder.mkdir()
+    book(folder / "gain.xlsx", ROWS)
+    book(folder / "bad.xlsx", [["Item", "f", "Gain (dB)"], ["LNA-1", 27.5, 20]])
+    (folder / "~$gain.xlsx").write_text("", encoding="utf-8")
+    tried = command("attach", folder, "--dry-run")
+    assert tried.code == ExitCode.BAD_INPUT and "nothing was stored" in tried.err and tables(project) == []
+    done = command("attach", folder, "--yes")
+    assert done.code == ExitCode.BAD_INPUT and tables(project) == ["EV-1"]
+    assert "data, B1: 1 question is open" in done.out and "the lock of a program" in done.out
+    assert "2 of 2 files: 1 accepted, 1 rejected, 1 passed over" in done.err
+    assert tried.out.replace("Files, as they would be attached", "Files") == done.out
+    (folder / "bad.xlsx").unlink()
+    again = json.loads(command("attach", folder, "--yes", "--json").out)
+    assert again["counts"] == {"accepted": 0, "unchanged": 1, "rejected": 0}
+    assert command("attach", folder, "--yes").code == ExitCode.CLEAN
+
+
+def test_a_folder_asks_once(
+    command: Command, project: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    folder = tmp_path / "results"
+    folder.mkdir()
+    book(folder / "a.xlsx", ROWS)
+    book(folder / "b.xlsx", [HEADER, ["LNA-2", 27.5, 20.1]])
+    book(folder / "c.xlsx", [["Item", "f", "Gain (dB)"], ["LNA-1", 27.5, 20]])
+    done = command("attach", folder)
+    assert done.code == ExitCode.BAD_INPUT and "--yes" in done.err and tables(project) == []
+    asked: list[str] = []
+
+    def answer(question: str) -> bool:
+        asked.append(question)
+        return len(asked) == 2
+
+    monkeypatch.setattr(folder_command, "ask", answer)
+    assert command("attach", folder).code == ExitCode.CLEAN and tables(project) == []
+    done = command("attach", folder)
+    assert asked == ["store the 2 files that are clean?"] * 2
+    assert done.code == ExitCode.BAD_INPUT and tables(project) == ["EV-1", "EV-2"]
+    assert "3 of 3 files: 2 accepted, 1 rejected" in done.err
+
+
+def test_a_folder_without_results_and_a_call_without_a_file(
+    command: Command, project: Path, tmp_path: Path
+) -> None:
+    folder = tmp_path / "results"
+    folder.mkdir()
+    done = command("attach", folder, "--yes")
+    assert done.code == ExitCode.BAD_INPUT and "without measurement files" in done.err
+    done = command("attach")
+    assert done.code == ExitCode.BAD_INPUT and "no file is named" in done.err
+
+
+def test_verify_says_what_changed_and_ends_with_1(command: Command, project: Path, tmp_path: Path) -> None:
+    path = book(tmp_path / "gain.xlsx", ROWS)
+    command("attach", path, "--yes", "--keep")
+    done = command("attach", "--verify")
+    assert done.code == ExitCode.CLEAN and "1 file: 1 unchanged" in done.err
+    book(path, [HEADER, ["LNA-1", 27.5, 20.2]])
+    done = command("attach", "--verify", tmp_path)
+    assert done.code == ExitCode.FINDINGS and "C2" in done.out and "20.1 dB" in done.out
+    assert json.loads(command("attach", "--verify", "--json").out)["files"][0]["state"] == "changed"
+    path.unlink()
+    assert command("attach", "--verify").code == ExitCode.CLEAN
+    done = command("export", "--file", "F-1", "-o", "back.xlsx")
+    assert done.out.strip() == "back.xlsx" and (tmp_path / "back.xlsx").is_file()
+    done = command("export", "--file", "F-1", "-o", "back.xlsx")
+    assert done.code == ExitCode.BAD_INPUT and "exists already" in done.err
+    assert command("export", "--file", "F-1", "--format", "csv").code == ExitCode.BAD_INPUT
+    assert command("attach", "--verify", "none").code == ExitCode.BAD_INPUT

@@ -158,6 +158,46 @@ def test_two_processes_without_a_rendezvous(project: Path, tmp_path: Path) -> No
         assert store.revision == 2 + done and len(store.load().tables) == done
 
 
+@pytest.mark.parametrize("stop", [signal.SIGINT, signal.SIGKILL], ids=lambda stop: stop.name)
+def test_a_folder_that_is_cut_off(
+    command: Command, project: Path, tmp_path: Path, stop: signal.Signals
+) -> None:
+    folder = tmp_path / "results"
+    folder.mkdir()
+    for seed in range(3):
+        measured(folder / f"{seed}.csv", 2000, seed)
+    process = start(project, "attach", folder, "--yes", "--beside", program=STOPPING)
+    wait_for(process, "written")
+    assert process.stdin is not None
+    process.stdin.write("go on\n")
+    process.stdin.flush()
+    wait_for(process, "written")  # the second file is in its transaction, the first is stored
+    process.send_signal(stop)
+    outcome = ended(process)
+    assert "Traceback" not in outcome.err
+    if stop is signal.SIGINT:
+        assert outcome.code == ExitCode.INTERRUPTED
+        assert "1 of 3 files: 1 accepted" in outcome.err and "run it again to go on" in outcome.err
+    with open_project(project) as store:
+        assert [table.id for table in store.load().tables] == ["EV-1"]
+    done = command("attach", folder, "--yes", "--beside")
+    assert done.code == ExitCode.CLEAN and "3 of 3 files: 2 accepted, 1 unchanged" in done.err
+
+
+def test_two_processes_that_attach_folders_at_once(project: Path, tmp_path: Path) -> None:
+    folders = []
+    for half in range(2):
+        folders.append(tmp_path / f"results{half}")
+        folders[-1].mkdir()
+        for seed in range(3):
+            measured(folders[-1] / f"{half}{seed}.csv", 500, 10 * half + seed)
+    running = [start(project, "attach", folder, "--yes", "--beside") for folder in folders]
+    outcomes = [ended(one) for one in running]
+    assert [outcome.code for outcome in outcomes] == [ExitCode.CLEAN, ExitCode.CLEAN], outcomes
+    with open_project(project) as store:
+        assert [table.id for table in store.load().tables] == [f"EV-{number}" for number in range(1, 7)]
+
+
 @contextmanager
 def small_disk(folder: Path, size: str) -> Iterator[Path]:
     """Mount a disk of this size; the test is skipped where one may not."""
