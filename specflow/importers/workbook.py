@@ -57,6 +57,7 @@ def read_workbook(path: str | Path, snapshot: Snapshot, dictionary: Dictionary) 
         documents=documents,
         findings=_in_order(intake.findings, [grid.name for grid in file]),
         echoes={code: words for code, words in intake.echoes.items() if code in kept},
+        places={code: parts for code, parts in intake.places.items() if code in kept},
         removals=intake.removals,
     )
 

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+import re
+from collections.abc import Iterator, Mapping
 from dataclasses import replace
 
 from specflow.errors import SpecflowError
@@ -13,6 +14,7 @@ from specflow.model.draft import Draft
 from specflow.model.evidence import EvidenceTable
 from specflow.model.finding import Finding, Severity
 from specflow.model.nouns import NOUN_BY_DOCUMENT
+from specflow.model.origin import Origin
 from specflow.model.snapshot import Snapshot
 from specflow.workflows.evaluate_project import project_dictionary
 
@@ -25,7 +27,7 @@ def without_refused_budgets(draft: Draft, snapshot: Snapshot) -> Draft:
     budgets = [document for document in draft.documents if isinstance(document, Budget)]
     if not any(budget.lines for budget in budgets):
         return draft
-    findings = list(_refusals(budgets, _as_loaded(draft, snapshot)))
+    findings = list(_refusals(budgets, _as_loaded(draft, snapshot), draft.places))
     refused = {code_key(finding.subject) for finding in findings}
     kept = [document for document in draft.documents if not _falls(document, refused, snapshot)]
     echoes = {code: words for code, words in draft.echoes.items() if code_key(code) not in refused}
@@ -33,7 +35,9 @@ def without_refused_budgets(draft: Draft, snapshot: Snapshot) -> Draft:
     return replace(draft, documents=kept, findings=found, echoes=echoes) if findings else draft
 
 
-def _refusals(budgets: list[Budget], project: Snapshot) -> Iterator[Finding]:
+def _refusals(
+    budgets: list[Budget], project: Snapshot, places: Mapping[str, Mapping[str, Origin]]
+) -> Iterator[Finding]:
     from specflow.budgets.evaluate import evaluate_budget  # a workbook without budgets does without
 
     dictionary = project_dictionary(project)
@@ -50,8 +54,14 @@ def _refusals(budgets: list[Budget], project: Snapshot) -> Iterator[Finding]:
                 subject_kind="budget",
                 message=f"{error.where}: {error.message}" if error.where else error.message,
                 remedy=error.hint or "correct the budget",
-                origin=budget.origin,
+                origin=_cell(error.where, places.get(budget.id, {})) or budget.origin,
             )
+
+
+def _cell(where: str, places: Mapping[str, Origin]) -> Origin | None:
+    """Return the cell of the line, else of the position, that an error names; None for the budget as a whole."""
+    named = [part for part in places if re.search(rf"{re.escape(part)}(?!\d)", where)]
+    return places[max(named, key=len)] if named else None
 
 
 def _waits(budget: Budget, project: Snapshot) -> bool:

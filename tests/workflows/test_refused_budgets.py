@@ -59,6 +59,8 @@ def test_a_budget_that_cannot_be_is_one_message_and_nothing_is_saved(
     (finding,) = shown.rejected
     assert finding.subject == "B-1" and finding.remedy and finding.origin is not None
     assert place in finding.message and message in finding.message
+    row = next(number for number, one in enumerate(lines, 2) if place.split()[0] == one["Block"])
+    assert (finding.origin.sheet, finding.origin.row) == ("Budget lines", row)
     with pytest.raises(DocumentError, match="nothing was stored"):
         accept_load(store, shown, by="A. Invented")
     assert store.revision == before

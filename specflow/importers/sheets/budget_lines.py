@@ -342,6 +342,10 @@ def _line(row: SheetRow, order: int, block: str, group: _Lines, intake: Intake) 
     notes = list(found.notes)
     tolerance = line_tolerance(row, found.unit, notes)
     growth = row.number_or("growth", 0.0)
+    if growth < 0:
+        row.fault(
+            "growth", f"{growth:g} is no allowance", "write how much worse it may get, as a positive number"
+        )
     line = row.build(
         BudgetLine,
         position=order,
@@ -361,6 +365,8 @@ def _line(row: SheetRow, order: int, block: str, group: _Lines, intake: Intake) 
         source=row.prose("source"),
     )
     if line is not None:
+        intake.place(group.budget, line.place, row.origin("value"))
+        intake.place(group.budget, f"position {order}", row.origin("block"))
         words = f"{line.block} {line.parameter} {value_words(line.value, line.unit, line.drifts)}"
         words += f" {tolerance_words(tolerance, line.unit)}" if tolerance is not None else ""
         group.words.append("; ".join((words, *notes)))

@@ -9,6 +9,7 @@ from specflow.importers.sheets.intake import Intake
 from specflow.importers.sheets.parameters import known_parameter
 from specflow.importers.sheets.row import SheetRow
 from specflow.importers.sheets.sheet import MARK_COLUMN, Sheet, each_row
+from specflow.model.base import code_key
 from specflow.model.budget import Budget, Correlation, Law, Reserve
 from specflow.model.conditions import ConditionsSet
 from specflow.model.parameter import Parameter, QuantityIdentity
@@ -162,9 +163,9 @@ def build(row: SheetRow, intake: Intake) -> Budget | None:
         conditions=conditions,
         input_level=None if level is None else float(level.value),
         input_level_unit="dBm" if level is None else format_unit(level.unit),
-        noise_source=_in(row, "noise_source", "K"),
-        bandwidth_hz=_in(row, "bandwidth", "Hz"),
-        channel_spacing_hz=_in(row, "channel_spacing", "Hz"),
+        noise_source=_in(row, "noise_source", "K", "a temperature below 0 K"),
+        bandwidth_hz=_in(row, "bandwidth", "Hz", "no bandwidth: one is above 0 Hz", is_above=True),
+        channel_spacing_hz=_in(row, "channel_spacing", "Hz", "no spacing: one is above 0 Hz", is_above=True),
         positions=before.positions if before else (),
         lines=before.lines if before else (),
         correlations=correlations,
@@ -184,12 +185,18 @@ def _quantity(row: SheetRow, intake: Intake, requirements: tuple[str, ...]) -> Q
     return None if first is None else first.quantity
 
 
-def _in(row: SheetRow, column: str, unit: str) -> float | None:
+def _in(row: SheetRow, column: str, unit: str, wrong: str, *, is_above: bool = False) -> float | None:
+    """Read a cell in a unit; what is below 0 (or at it, ``is_above``) is refused as ``wrong``."""
     quantity = unit_cell(row, column)
     if quantity is None:
         return None
     value = row.attempt(column, lambda: convert(float(quantity.value), quantity.unit, parse_unit(unit)))
-    return None if value is None else float(value)
+    if value is None:
+        return None
+    if value < 0 or (is_above and value == 0):
+        row.fault(column, f"{row.text(column)!r} is {wrong}", "correct the sign, the number or the unit")
+        return None
+    return float(value)
 
 
 def _parts(text: str) -> list[str]:
@@ -226,6 +233,13 @@ def _reserve(
     )
     if value is None or not row.sound:
         return None
+    if value < 0:
+        row.fault(
+            "reserve",
+            f"{text!r} keeps nothing back: a reserve is a positive amount",
+            "write how much of the margin is kept back, such as 0.2 dB",
+        )
+        return None
     return row.attempt(
         "reserve",
         lambda: Reserve(
@@ -243,14 +257,25 @@ def _correlation(row: SheetRow, text: str) -> Correlation | None:
             "write two groups and a coefficient: heat, supply: 0.5",
         )
         return None
-    return row.attempt(
-        "correlations",
-        lambda: Correlation(
-            first=found["first"].strip(),
-            second=found["second"].strip(),
-            coefficient=parse_number(found["coefficient"]),
-        ),
-    )
+    coefficient = row.attempt("correlations", lambda: parse_number(found["coefficient"]))
+    if coefficient is None:
+        return None
+    if not -1 <= coefficient <= 1:
+        row.fault(
+            "correlations",
+            f"{coefficient:g} is no correlation coefficient: one lies from -1 to 1",
+            "write 0.5 for 50 %; 1 moves both groups together, 0 leaves them independent",
+        )
+        return None
+    first, second = found["first"].strip(), found["second"].strip()
+    if code_key(first) == code_key(second):
+        row.fault(
+            "correlations",
+            f"the lines of the group {first} are fully correlated as they are",
+            "name two groups",
+        )
+        return None
+    return Correlation(first=first, second=second, coefficient=coefficient)
 
 
 SHEET = Sheet(LAYOUT, Budget, each_row(build))

@@ -17,6 +17,7 @@ from specflow.importers.sheets.spelling import near
 from specflow.model.base import Document, code_key
 from specflow.model.finding import Finding, Severity
 from specflow.model.nouns import NOUN_BY_DOCUMENT
+from specflow.model.origin import Origin
 from specflow.model.parameter import Parameter
 from specflow.model.requirement import Activity, Requirement
 from specflow.model.snapshot import Snapshot
@@ -41,6 +42,7 @@ class Intake:
     dictionary: Dictionary
     findings: list[Finding] = field(default_factory=list)
     echoes: dict[str, str] = field(default_factory=dict)
+    places: dict[str, dict[str, Origin]] = field(default_factory=dict)
     documents: dict[str, dict[str, Document]] = field(default_factory=dict)
     codes: dict[str, dict[str, tuple[str, SheetRow, str]]] = field(default_factory=dict)
     shorthand: dict[str, list[Activity]] = field(default_factory=dict)
@@ -92,6 +94,10 @@ class Intake:
     def echo(self, code: str, sentence: str) -> None:
         """Say back how something was understood."""
         self.echoes[code] = "; ".join(filter(None, (self.echoes.get(code, ""), sentence)))
+
+    def place(self, code: str, part: str, origin: Origin) -> None:
+        """Note the cell of a part of a document, by what messages call the part; the first one counts."""
+        self.places.setdefault(code, {}).setdefault(part, origin)
 
     def add(self, document: Document, stated: Iterable[str] = ()) -> None:
         """Take a document. What no column of the sheet states stays as the project has it.

@@ -183,6 +183,7 @@ def test_loading_the_budgets_without_their_lines_keeps_the_lines_that_the_projec
         ({"Distribution": "normal"}, "has no limits"),
         ({"Parameter": "ip3"}, "ip3"),
         ({"N in parallel": 0}, "not a whole number from 1"),
+        ({"Growth allowance": -0.5}, "is no allowance"),
     ],
 )
 def test_lines_that_are_refused(tmp_path: Path, change: dict[str, Any], words: str) -> None:
@@ -209,6 +210,11 @@ def test_one_mistake_leaves_all_lines_of_the_budget_as_they_were(tmp_path: Path)
         ({"Correlations": "heat supply"}, "no correlation"),
         ({"Noise bandwidth": "10 dB"}, "dB"),
         ({"Input level": "-60"}, "no unit"),
+        ({"Noise source": "-5 K"}, "a temperature below 0 K"),
+        ({"Noise bandwidth": "0 Hz"}, "no bandwidth"),
+        ({"Reserve": "-0.2 dB", "Reserve held by": "Systems"}, "a reserve is a positive amount"),
+        ({"Correlations": "heat, supply: 1.5"}, "1.5 is no correlation coefficient"),
+        ({"Correlations": "heat, Heat: 0.5"}, "fully correlated as they are"),
     ],
 )
 def test_budgets_that_are_refused(tmp_path: Path, change: dict[str, Any], words: str) -> None:
