@@ -45,7 +45,7 @@ COMMANDS = (
     CommandEntry("derive", "Derive results from raw tables by a law."),
     CommandEntry("known", "Evaluate a budget with the best that is known of each block."),
     CommandEntry("try", "Try changes: what they would do to margins, allocations and status.", "try_"),
-    CommandEntry("status", "Show what is proved, failing and missing."),
+    CommandEntry("status", "Show what is proved, what fails and what has no evidence."),
     CommandEntry("check", "List the findings of the rules."),
     CommandEntry("trace", "Walk from a requirement up to the system and down to the cell."),
     CommandEntry("export", "Write the compliance workbook, or the same as a page, csv or JSON."),

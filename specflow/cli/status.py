@@ -1,4 +1,4 @@
-"""``specflow status``: what is proved, failing and missing."""
+"""``specflow status``: what is proved, what fails and what has no evidence."""
 
 from __future__ import annotations
 
@@ -27,7 +27,7 @@ def status(
     as_of: AsOfOption = "",
     as_json: JsonOption = False,
 ) -> None:
-    """Show what is proved, failing and missing.
+    """Show what is proved, what fails and what has no evidence.
 
     One row a requirement: k of n required points proved, the worst guarded margin and where it is, and its state.
     Totals of compliance and of close-out follow, with their denominators.

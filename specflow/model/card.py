@@ -17,7 +17,7 @@ class PointState(StrEnum):
     PROVED = "proved"
     UNDECIDED = "undecided"
     FAILING = "failing"
-    MISSING = "missing"
+    WITHOUT_EVIDENCE = "without evidence"
 
 
 class BarAxis(StrEnum):

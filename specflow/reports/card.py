@@ -68,12 +68,12 @@ def requirement_card(
 
 
 def proved_words(status: RequirementStatus) -> str:
-    """Return how far a requirement is proved: failing, missing and undecided points are counted apart."""
+    """Return how far a requirement is proved: failing points, those without evidence and undecided ones are counted apart."""
     if status.n == 0:
         return "no required points"
     counts = (
         (status.n_failing, "failing"),
-        (status.n_without_evidence, PointState.MISSING.value),
+        (status.n_without_evidence, PointState.WITHOUT_EVIDENCE.value),
         (status.n_undecided, PointState.UNDECIDED.value),
     )
     said = [f"{count} {word}" for count, word in counts if count]

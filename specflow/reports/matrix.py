@@ -33,7 +33,7 @@ MATRIX_COLUMNS = (
     ReportColumn(key="compliance", title="Compliance", width=16),
     ReportColumn(key="proved", title="Points proved", align=Align.RIGHT, width=10),
     ReportColumn(key="failing", title="Failing", align=Align.RIGHT, width=9),
-    ReportColumn(key="missing", title="Without evidence", align=Align.RIGHT, width=10),
+    ReportColumn(key="without_evidence", title="Without evidence", align=Align.RIGHT, width=10),
     ReportColumn(
         key="undecided", title="Undecided", align=Align.RIGHT, width=11, explains="evidence proves nothing"
     ),
@@ -168,7 +168,7 @@ def _where_it_stands(status: RequirementStatus, finder: OriginFinder) -> dict[st
         ),
         "proved": ReportCell(text=share(status.k, status.n), number=float(status.k)),
         "failing": _count(status.n_failing, CellTone.BAD),
-        "missing": _count(status.n_without_evidence, CellTone.DOUBTFUL),
+        "without_evidence": _count(status.n_without_evidence, CellTone.DOUBTFUL),
         "undecided": _count(status.n_undecided, CellTone.DOUBTFUL),
         "verdict": text(status.verdict.words, verdict_tone(status.verdict)),
         "value": finder.recorded(governing.record) if governing else text(""),

@@ -22,7 +22,7 @@ from specflow.reports.points import points_of, record_at, shown_items, words_of
 MOST_CELLS = 3000  # more cannot be looked at; an export has them all
 SPARSE = 3  # a table of rows and columns of which most cells are empty says less than a list
 
-STATES = (PointState.FAILING, PointState.MISSING, PointState.UNDECIDED, PointState.PROVED)
+STATES = (PointState.FAILING, PointState.WITHOUT_EVIDENCE, PointState.UNDECIDED, PointState.PROVED)
 FAILING = (Verdict.FAIL, Verdict.CONDITIONAL_FAIL)
 
 
@@ -41,10 +41,10 @@ class Sheet:
     def states(self) -> NDArray[np.int8]:
         """Return the state of every point, as codes into STATES."""
         if self.found is None:
-            return np.full(self.count, STATES.index(PointState.MISSING), np.int8)
+            return np.full(self.count, STATES.index(PointState.WITHOUT_EVIDENCE), np.int8)
         states = np.full(self.count, STATES.index(PointState.UNDECIDED), np.int8)
         states[(self.found.table < 0) | (self.found.verdict == Verdict.NONE)] = STATES.index(
-            PointState.MISSING
+            PointState.WITHOUT_EVIDENCE
         )
         states[self.found.proved] = STATES.index(PointState.PROVED)
         states[np.isin(self.found.verdict, FAILING)] = STATES.index(PointState.FAILING)
@@ -55,7 +55,9 @@ class Sheet:
         found = self.found
         words = words_of(self.points, place)
         lacks = (
-            self.lacking.words(place, found) if state in (PointState.MISSING, PointState.UNDECIDED) else ""
+            self.lacking.words(place, found)
+            if state in (PointState.WITHOUT_EVIDENCE, PointState.UNDECIDED)
+            else ""
         )
         if found is None:
             return ProofCell(words=words, state=state, verdict="no evidence", lacks=lacks)

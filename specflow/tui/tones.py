@@ -17,11 +17,11 @@ POINT_MARKS = {
     PointState.PROVED: "■",
     PointState.FAILING: "×",
     PointState.UNDECIDED: "~",
-    PointState.MISSING: "·",
+    PointState.WITHOUT_EVIDENCE: "·",
 }
 POINT_STYLES = {
     PointState.PROVED: "$success",
     PointState.FAILING: "bold $error",
     PointState.UNDECIDED: "$warning",
-    PointState.MISSING: "$secondary",
+    PointState.WITHOUT_EVIDENCE: "$secondary",
 }

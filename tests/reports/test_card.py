@@ -38,7 +38,7 @@ def states(id: str, grid: int = 0) -> list[list[str]]:
 def test_the_card_says_the_limit_in_words_and_as_written() -> None:
     found = card("PA-1")
     assert (found.limit_words, found.limit_text) == ("at least 30 dBm", ">= 30 dBm")
-    assert found.proved == "8 of 9 proved, 4 failing, 1 missing"
+    assert found.proved == "8 of 9 proved, 4 failing, 1 without evidence"
     facts = dict(found.facts)
     assert facts["Governed at"] == "30 GHz, +85 °C ambient, item PA-A: 0.95 W"
     assert facts["Guarded margin"] == "-1.19 dB"
@@ -99,7 +99,7 @@ def test_the_item_that_fails_has_a_grid_of_its_own() -> None:
         "item PA-A: 4 of 9 proved",
     ]
     assert states("PA-1", 1) == [
-        ["proved", "proved", "missing"],
+        ["proved", "proved", "without evidence"],
         ["failing", "proved", "proved"],
         ["failing", "failing", "failing"],
     ]
@@ -107,7 +107,7 @@ def test_the_item_that_fails_has_a_grid_of_its_own() -> None:
 
 def test_an_open_point_says_how_far_the_nearest_record_of_its_item_is() -> None:
     cell = card("PA-1").grids[0].cells[1][1]
-    assert cell is not None and cell.state is PointState.MISSING and cell.verdict == "no evidence"
+    assert cell is not None and cell.state is PointState.WITHOUT_EVIDENCE and cell.verdict == "no evidence"
     assert cell.lacks == "nearest in T-PA: +85 °C ambient is not +25 °C ambient (off by 60 K, 2 K allowed)"
 
 
@@ -134,7 +134,7 @@ def test_very_many_points_are_cut_to_the_worst(monkeypatch: pytest.MonkeyPatch) 
     monkeypatch.setattr(proof_grid, "MOST_CELLS", 5)
     grid = card("PA-1").grids[1]
     kept = [cell.state.value for cell in grid.cells[0] if cell]
-    assert sorted(kept) == ["failing"] * 4 + ["missing"]
+    assert sorted(kept) == ["failing"] * 4 + ["without evidence"]
     assert grid.note.startswith("the 5 worst of 9 points")
 
 

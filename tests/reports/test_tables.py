@@ -67,9 +67,9 @@ def test_the_matrix_names_the_governing_value_with_the_cell_it_stands_in(matrix:
     assert row["guarded_margin"].number == pytest.approx(-1.188857538602619)
 
 
-def test_the_matrix_counts_failing_and_missing_apart(matrix: ReportTable) -> None:
+def test_the_matrix_counts_failing_and_without_evidence_apart(matrix: ReportTable) -> None:
     row = cells(matrix, "PA-1")
-    assert (row["proved"].text, row["failing"].text, row["missing"].text) == ("8 of 9", "4", "1")
+    assert (row["proved"].text, row["failing"].text, row["without_evidence"].text) == ("8 of 9", "4", "1")
     assert row["label"].text == "failing" and row["label"].tone is CellTone.BAD
 
 

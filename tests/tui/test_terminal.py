@@ -82,7 +82,7 @@ def test_browse_in_a_terminal(terminal: Terminal, tmp_path: Path) -> None:
     screen = terminal.wait(shows("SYS-1 · planned", "28 of 52 points proved, 4 failing"))
     assert all(len(line) <= 80 for line in screen.splitlines())
     terminal.press("n")
-    terminal.wait(shows("PA-1 · failing", "at least 30 dBm", "8 of 9 proved, 4 failing, 1 missing"))
+    terminal.wait(shows("PA-1 · failing", "at least 30 dBm", "8 of 9 proved, 4 failing, 1 without"))
     terminal.press("g")
     terminal.wait(shows("x open point"))
     terminal.press("g")

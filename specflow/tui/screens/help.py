@@ -28,7 +28,7 @@ POINTS = {
     PointState.PROVED: "proved: a governing verdict that passes, from evidence with credit",
     PointState.FAILING: "failing: beyond the limit",
     PointState.UNDECIDED: "undecided: there is evidence, and it does not prove the point",
-    PointState.MISSING: "missing: nothing is known of it",
+    PointState.WITHOUT_EVIDENCE: "without evidence: nothing is known of it",
 }
 
 

@@ -108,8 +108,8 @@ class ProofGridView(Widget, can_focus=True):
             self.cursor = (after or places)[0]
 
     def _first_open(self) -> Place | None:
-        """Return the worst of the open points: a failing one before one that is missing."""
-        order = [PointState.FAILING, PointState.MISSING, PointState.UNDECIDED]
+        """Return the worst of the open points: a failing one before one without evidence."""
+        order = [PointState.FAILING, PointState.WITHOUT_EVIDENCE, PointState.UNDECIDED]
         places = self._open_places()
         return min(places, key=lambda place: order.index(self._state(place)), default=None)
 

@@ -11,7 +11,7 @@ MOST_CELLS = 40
 
 
 class ProvedLine(Widget):
-    """A bar of the share of points proved; the words say the counts, failing and missing apart."""
+    """A bar of the share of points proved; the words say the counts, failing and without evidence apart."""
 
     DEFAULT_CSS = """
     ProvedLine { height: auto; }
