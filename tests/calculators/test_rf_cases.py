@@ -65,8 +65,8 @@ Inputs = Mapping[str, Any]
 Answer = Mapping[str, Any]
 
 ELSEWHERE = {
-    "touchstone_read": "reading Touchstone files belongs to the readers of files, not to the calculators",
-    "touchstone_value_count": "the count of values in a Touchstone file belongs to the readers of files",
+    "touchstone_read": "run by the tests of the reader of Touchstone files",
+    "touchstone_value_count": "run by the tests of the reader of Touchstone files",
 }
 
 
