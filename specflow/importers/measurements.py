@@ -110,6 +110,7 @@ def _read(
             read_as=replace(located.read_as, include_hidden_rows=True),
         )
     table = _with_how_read(read_table(located, context, person), located, person)
+    table = replace(table, asked=tuple(located.mapping.derive))
     if not located.mapping_from:
         return table
     return replace(table, mapping=write_mapping(replace(located.mapping, layout=located.key)))

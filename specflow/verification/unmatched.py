@@ -3,13 +3,15 @@
 from __future__ import annotations
 
 from collections import defaultdict
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 
 import numpy as np
 
 from specflow.conditions.match import unstated_conditions
 from specflow.conditions.points import Points
+from specflow.conditions.words import difference_words, range_words
 from specflow.model.base import code_key
+from specflow.model.derivation import Derivation
 from specflow.model.evidence import EvidenceTable
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Snapshot
@@ -32,13 +34,27 @@ def _idle(points: Points, records: Records, place: int) -> Mismatch:
     rows = np.flatnonzero(records.source == place)
     unstated = unstated_conditions(points, records.conditions.take(rows))
     missing = [name for name, lacking in unstated.items() if len(lacking) == len(rows)]
-    if missing:
+    derived = _derived_over(source.table, missing)
+    if derived:
+        what, remedy = derived, "derive it over the range that is required, from data with the step required"
+    elif missing:
         words = ", ".join(name.replace("_", " ") for name in missing)
         what, remedy = f"does not state the {words}", f"state the {words} for the table in its mapping"
     else:
         what = "no reading lies within the setting tolerance of a required point"
         remedy = "measure at the required conditions, or correct the conditions set"
     return Mismatch(source.table.id, source.column.name, len(rows), what, remedy, "conditions")
+
+
+def _derived_over(table: EvidenceTable, missing: Sequence[str]) -> str:
+    """Say of a derived table over what it was derived, where it lacks just that condition; "" for others."""
+    said = [
+        f"was derived over {range_words(one.dimension, one.low, one.high, one.unit)} with gaps up to "
+        f"{difference_words(one.largest_gap, one.unit)}, which is not what is required"
+        for one in table.covers
+        if one.dimension in missing
+    ]
+    return "; ".join(said)
 
 
 def misattributed(snapshot: Snapshot) -> Mapping[str, list[Mismatch]]:
@@ -72,8 +88,9 @@ def unmatched(workspace: Workspace) -> Mapping[str, str]:
         (code_key(one.block), code_key(one.quantity.parameter)) for one in workspace.snapshot.requirements
     }
     reasons: dict[str, str] = {}
+    read = {code_key(code) for one in workspace.snapshot.all(Derivation) for code in one.inputs}
     for table in workspace.snapshot.tables:
-        if table.id in workspace.served:
+        if table.id in workspace.served or code_key(table.id) in read:  # what was made of it is looked at instead
             continue
         reasons[table.id] = _reason(table, asked, workspace)
     return reasons

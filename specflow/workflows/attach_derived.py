@@ -3,18 +3,21 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from specflow.derive import Derived, Request, Role, complete_settings, derive_table
 from specflow.errors import SpecflowError
 from specflow.importers.measured.derivation_plan import DerivationPlan
+from specflow.importers.measured.mapping_parts import DeriveMapping
 from specflow.importers.measurements import MeasuredTable, Measurements
 from specflow.model.base import Document, code_key
 from specflow.model.derivation import Derivation
 from specflow.model.evidence import EvidenceColumns, EvidenceTable, Supersession, Withdrawal
+from specflow.model.parameter import QuantityIdentity
 from specflow.model.snapshot import Snapshot
 from specflow.parameters import Dictionary
 from specflow.workflows.derive import DerivePreview, law_named, made_documents, preview_of, repeated
+from specflow.workflows.derive_request import DeriveOptions, request_of
 
 
 @dataclass(frozen=True)
@@ -36,9 +39,7 @@ class PlannedTable:
         """Return the preview with the raw table under its final id."""
         assert self.request is not None and self.derived is not None
         roles = tuple(Role(one.name, table, one.columns, one.column, one.where) for one in self.request.roles)
-        request = Request(
-            self.request.law, roles, self.request.settings, self.request.gives, self.request.over
-        )
+        request = replace(self.request, roles=roles)
         return preview_of(snapshot, request, self.plan.quantity, self.derived)
 
 
@@ -50,9 +51,12 @@ def planned_tables(
 ) -> Planned:
     """Apply the plans of all tables of a file, by position of the table; ``known`` tables are stored under an id."""
     return {
-        place: [_planned(snapshot, dictionary, table, plan, known.get(place, "")) for plan in table.plans]
+        place: [
+            *(_planned(snapshot, dictionary, table, plan, known.get(place, "")) for plan in table.plans),
+            *(_asked(snapshot, dictionary, table, entry, known.get(place, "")) for entry in table.asked),
+        ]
         for place, table in enumerate(measurements.tables)
-        if table.plans and not _is_gone(snapshot, known.get(place, ""))
+        if (table.plans or (table.asked and table.document)) and not _is_gone(snapshot, known.get(place, ""))
     }
 
 
@@ -71,10 +75,48 @@ def _planned(
         derived = derive_table(request)
     except SpecflowError as error:
         return PlannedTable(plan, failure=f"{error.message} ({error.hint})" if error.hint else error.message)
-    found = PlannedTable(plan, request, derived)
-    if not stored:
+    return _compared(snapshot, PlannedTable(plan, request, derived), document if stored else None)
+
+
+def _compared(snapshot: Snapshot, found: PlannedTable, stored: EvidenceTable | None) -> PlannedTable:
+    """Say where exactly this is stored already, for a raw table that is."""
+    if stored is None:
         return found
-    return PlannedTable(plan, request, derived, stored_as=found.rooted_in(snapshot, document).stored_as)
+    return replace(found, stored_as=found.rooted_in(snapshot, stored).stored_as)
+
+
+def _asked(
+    snapshot: Snapshot, dictionary: Dictionary, table: MeasuredTable, entry: DeriveMapping, stored: str
+) -> PlannedTable:
+    """Apply a law that the mapping of a table asks for."""
+    document = snapshot.find(EvidenceTable, stored) if stored else table.document
+    quantity = QuantityIdentity(parameter=entry.gives or entry.law)
+    plan = DerivationPlan(entry.law, (), quantity, entry.over, "the mapping", ", ".join(entry.values))
+    if document is None or table.columns is None:
+        return PlannedTable(plan, failure="the table gives no evidence")
+    options = DeriveOptions(
+        entry.law,
+        (),
+        entry.values,
+        (entry.over,) if entry.over else (),
+        entry.where,
+        entry.settings,
+        entry.gives,
+        entry.plane,
+        entry.statistic,
+        entry.polarisation,
+        entry.requirement,
+    )
+    try:
+        request, quantity = request_of(
+            snapshot, dictionary, options, [document], {document.id: table.columns}
+        )
+        derived = derive_table(request)
+    except SpecflowError as error:
+        return PlannedTable(plan, failure=f"{error.message} ({error.hint})" if error.hint else error.message)
+    values = tuple((role.name, role.column) for role in request.roles)
+    plan = replace(plan, values=values, quantity=quantity, shown=", ".join(column for _, column in values))
+    return _compared(snapshot, PlannedTable(plan, request, derived), document if stored else None)
 
 
 def _is_gone(snapshot: Snapshot, code: str) -> bool:

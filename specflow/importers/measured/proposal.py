@@ -21,6 +21,8 @@ HEAD = f"""# A mapping of measurement tables: how the columns of each layout are
 # uncertainty: unit, k = 2 (1: a standard uncertainty), of = "header of the values"
 # table:       block, method, stage; [table.stated] for conditions that hold for all rows; header_rows = 2;
 #              include_hidden_rows, keep_summary_rows, keep_placeholders, skip = true
+# derive:      [[table.derive]] law = "ripple", over = "frequency 17.7..20.2 GHz step 0.1 GHz", requirement = "R-1"
+#              (specflow derive lists the laws; values, where, settings, gives, plane, statistic)
 # pivot:       [table.pivot] header = "Gain @ {{frequency}} GHz", parameter, unit, units = {{ frequency = "GHz" }}
 format = {FORMAT}
 """

@@ -7,6 +7,7 @@ from dataclasses import dataclass, field
 from enum import StrEnum
 
 from specflow.importers.measured.derivation_plan import DerivationPlan
+from specflow.importers.measured.mapping_parts import DeriveMapping
 from specflow.model.evidence import EvidenceColumns, EvidenceFile, EvidenceTable, LeftOut
 from specflow.model.finding import Finding
 
@@ -62,7 +63,7 @@ class MeasuredTable:
     ``blank`` counts cells without a result, by reason. ``notes`` tell what was done on the way; ``findings`` doubt
     readings that were taken as they stand. ``mapping`` is the
     TOML of the mapping that was used, ``mapping_from`` says where it came from ("" when none was needed). ``plans`` are
-    laws to be applied to it once it is stored.
+    laws to be applied to it once it is stored, ``asked`` those that its mapping asks for.
     """
 
     sheet: str
@@ -83,6 +84,7 @@ class MeasuredTable:
     document: EvidenceTable | None = None
     columns: EvidenceColumns | None = None
     plans: tuple[DerivationPlan, ...] = ()
+    asked: tuple[DeriveMapping, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
