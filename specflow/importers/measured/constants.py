@@ -62,6 +62,8 @@ def read_constants(table: FoundTable, mapping: LayoutMapping, stated: Stated) ->
     for header in table.headers:
         parts = read_header(header.text)
         name = name_of(parts.name)
+        if name not in _OF_THE_TABLE and table.cells(header.column).numeric.all():
+            continue  # a million numbers are not looked at one by one
         cells = table.cells(header.column).at(table.rows)
         if speaks_of_kinds(parts.name, cells) and not mapping_settles(mapping, header.text, header.letter):
             found[header.column] = ConstantColumn(Role.SPECTRUM, "it says line or noise of each row")
