@@ -85,7 +85,8 @@ def _numbers(table: EvidenceTable, columns: EvidenceColumns) -> Iterator[_Number
     stacked = columns.extra.get(SOURCE_COLUMN)
     for column in table.values:
         values = columns.values[column.name]
-        keys = rows + (column.column if stacked is None else _column_numbers(stacked))
+        keys = rows + column.lines_below * _COLUMNS
+        keys = keys + (column.column if stacked is None else _column_numbers(stacked))
         name = column.header or column.name
         yield _Numbers(column.name, name, column.unit, keys, values.low, values.high)
         if values.u is not None:

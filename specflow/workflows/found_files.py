@@ -10,6 +10,7 @@ from pathlib import Path
 
 from specflow.errors import FileError
 from specflow.importers.readers import READERS
+from specflow.importers.readers.touchstone import is_touchstone
 from specflow.model.evidence import EvidenceFile
 
 _BLOCK = 1 << 20
@@ -70,7 +71,7 @@ def reason_to_pass(path: Path) -> str:
     if reason:
         return reason
     endings = {ending for reader in READERS for ending in reader.endings}
-    if path.suffix.lower() not in endings:
+    if path.suffix.lower() not in endings and not is_touchstone(path.name):
         return f"files of the kind {path.suffix!r} are not read" if path.suffix else "it has no ending"
     return "" if path.is_file() else "no plain file"
 

@@ -11,6 +11,7 @@ from typing import cast
 from specflow.errors import SpecflowError
 from specflow.exchange import read_text
 from specflow.importers.measurements import MeasuredTable, Measurements, read_measurements
+from specflow.importers.readers.touchstone import is_touchstone
 from specflow.model.base import Document, code_key
 from specflow.model.evidence import EvidenceColumns, EvidenceTable, TableMapping
 from specflow.model.snapshot import Snapshot
@@ -95,12 +96,15 @@ class Rereader:
 
     def _read(self, manner: Manner, tables: Sequence[EvidenceTable], path: Path) -> Measurements:
         revision, stated, include_hidden_rows = manner
+        said = dict(stated)
+        if is_touchstone(path.name):
+            said["derive"] = "none"  # what requirements ask for now is no matter of how the file was read
         documents = {**self._snapshot.documents, "mapping": self._mappings_at(revision)}
         return read_measurements(
             path,
             replace(self._snapshot, documents=documents),
             self._dictionary,
-            stated=dict(stated),
+            stated=said,
             sheets=[] if any(not table.sheet for table in tables) else _sheets(tables),
             include_hidden_rows=include_hidden_rows,
         )

@@ -21,7 +21,9 @@ from specflow.model.evidence import EvidenceTable, Supersession
 from specflow.store import ProjectStore, create_project
 from specflow.workflows.attach import AttachOptions, Decision, accept_attach, preview_attach
 from specflow.workflows.evaluate_project import evaluate_project
+from specflow.workflows.found_files import find_files
 from specflow.workflows.trace import trace
+from specflow.workflows.verify_files import FileState, verify_files
 from tests.builders import (
     a_block,
     a_conditions_set,
@@ -168,3 +170,22 @@ def test_a_file_that_replaces_another_replaces_what_was_derived_from_it(
     attached(store, path, Decision("A. B.", supersedes=("EV-1",)), **stated)
     steps = {(one.earlier, one.later) for one in store.load().all(Supersession)}
     assert steps == {("EV-1", "EV-3"), ("EV-2", "EV-4")}
+
+
+def test_a_network_is_verified_against_its_file(store: ProjectStore, tmp_path: Path) -> None:
+    path = tmp_path / "three.s3p"
+    rows = "{f} 0.5 0 0.25 0 0.125 0\n0.25 0 0.5 0 0.1 0\n0.125 0 0.1 0 0.5 0\n"
+    path.write_text("# GHz S RI R 50\n" + rows.format(f=1) + rows.format(f=2))
+    attached(store, path, block="FIL", item="FIL-7", derive="none")
+    asks_more = a_requirement(
+        "R-AI", block="FIL", quantity=a_quantity("amplitude_imbalance"), limit=at_most(0.5), conditions="PASS"
+    )
+    store.apply(adding(asks_more), by="A. B.")  # its ports are not named: no matter here
+    [same] = verify_files(store).checks
+    assert same.state is FileState.UNCHANGED
+    lines = path.read_text().splitlines()
+    lines[2] = "0.25 0 0.5 0 0.1 7"
+    path.write_text("\n".join(lines))
+    [changed] = verify_files(store).checks
+    assert [one.cell for one in changed.tables[0].differences] == ["F3"]
+    assert "three.s3p" in [file.name for file in find_files([tmp_path]).files]
