@@ -67,6 +67,11 @@ def create_noun_tables() -> None:
         attribute("parameter", "key of the parameter it is for"),
     )
     noun_table(
+        "correction",
+        "correction table",
+        attribute("set_up", "the measurement set-up"),
+    )
+    noun_table(
         "requirement",
         "requirement",
         link("requirement", "block", "block", nullable=False),
@@ -372,6 +377,7 @@ def downgrade() -> None:
         "budget",
         "activity",
         "requirement",
+        "correction",
         "uncertainty",
         "declared_value",
         "condition_map",

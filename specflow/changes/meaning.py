@@ -36,6 +36,7 @@ QUIET: Mapping[str, frozenset[str]] = {
     "condition_map": frozenset({"source"}),
     "declared_value": frozenset({"text", "declared_on", "declared_by"}),
     "uncertainty": frozenset({"stated", "source"}),
+    "correction": frozenset({"title", "source"}),
     "budget": frozenset({"title"}),
     "allocation": frozenset({"given_by", "taken_by", "agreed_on"}),
     "mapping": frozenset({"title"}),

@@ -18,6 +18,7 @@ from pydantic import Field
 
 from specflow.model.base import Code, Document
 from specflow.model.columns import Columns, TextColumn
+from specflow.model.correction import AppliedCorrection
 from specflow.model.derivation import Covered
 from specflow.model.origin import Origin
 from specflow.model.parameter import QuantityIdentity
@@ -147,6 +148,7 @@ class EvidenceTable(Document):
     performed_on: date | None = None
     equipment: tuple[Equipment, ...] = ()
     corrections: tuple[str, ...] = ()
+    applied: tuple[AppliedCorrection, ...] = ()
     simulation_model: str = ""
     simulation_version: str = ""
     simulation_validated: str = ""

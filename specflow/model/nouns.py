@@ -9,6 +9,7 @@ from specflow.model.baseline import Baseline
 from specflow.model.block import Block, Item
 from specflow.model.budget import Allocation, Budget
 from specflow.model.conditions import ConditionMap, ConditionsSet
+from specflow.model.correction import Correction
 from specflow.model.decision import Approval, DeclaredSplit, Disposition, Nonconformance, Waiver
 from specflow.model.declared import DeclaredValue, UncertaintyEntry
 from specflow.model.derivation import Derivation
@@ -49,6 +50,7 @@ NOUNS: tuple[Noun, ...] = (
     Noun("condition_map", "condition map", ConditionMap, links=(("block", "block"),)),
     Noun("declared_value", "declared value", DeclaredValue),
     Noun("uncertainty", "uncertainty register line", UncertaintyEntry),
+    Noun("correction", "correction table", Correction),
     Noun(
         "requirement",
         "requirement",

@@ -42,6 +42,7 @@ ATTRIBUTES: dict[str, tuple[tuple[str, str, str], ...]] = {
         ("set_up", "set_up", "the measurement set-up"),
         ("parameter", "parameter", "key of the parameter it is for"),
     ),
+    "correction": (("set_up", "set_up", "the measurement set-up"),),
     "requirement": (
         ("title", "title", "the requirement in a few words"),
         ("tier", "tier", "system, assembly or block"),
