@@ -18,6 +18,7 @@ from specflow.budgets.knowledge import Knowledge, KnownLine, best_known
 from specflow.budgets.probe import Probe, Target
 from specflow.budgets.ranges import slopes_at
 from specflow.budgets.result import BudgetResult, Served
+from specflow.budgets.spread import correlation_matrix
 from specflow.model.base import code_key
 from specflow.model.budget import Budget
 from specflow.model.snapshot import Snapshot
@@ -136,10 +137,10 @@ def _served(
 ) -> KnownServed:
     chain = result.chain
     slopes = slopes_at(chain, target.output, chain.nominal())
-    specimen = np.array([line.spread for line in lines]) * slopes
+    specimen, own_freedom = _specimen_parts(result.budget, lines, slopes)
     common = np.array([line.common for line in lines]) * slopes
-    variances = np.concatenate([specimen**2, common**2])
-    freedom = np.concatenate([np.array([line.freedom for line in lines]), np.full(common.shape, np.inf)])
+    variances = np.concatenate([specimen, common**2])
+    freedom = np.concatenate([own_freedom, np.full(common.shape, np.inf)])
     spread = np.sqrt(variances.sum(axis=0))
     degrees = effective_freedom(variances, freedom)
     reach = one_sided_quantile(confidence, degrees) * spread
@@ -147,6 +148,36 @@ def _served(
     predicted = np.minimum(target.bar.margin(value - reach), target.bar.margin(value + reach))
     in_limit = spread * _rise(target, value)
     return KnownServed(one, in_limit, degrees, predicted, _probability(target, value, in_limit, degrees))
+
+
+def _specimen_parts(budget: Budget, lines: Sequence[KnownLine], slopes: Floats) -> tuple[Floats, Floats]:
+    """Return variances of the result and their degrees of freedom (parts, n) by what the specimens differ in.
+
+    Lines that move together (one correlation group, or groups with a correlation stated between them) are one part,
+    dᵀ R d with the correlations of the budget; it has the fewest degrees of freedom of its lines that count.
+    """
+    matrix = correlation_matrix(budget, [line.read.line for line in lines])
+    moved = np.array([line.spread for line in lines]) * slopes
+    each = np.array([line.freedom for line in lines])
+    variances, freedom = [], []
+    for part in _connected(matrix):
+        d = moved[part]
+        variances.append(np.maximum(np.einsum("in,ij,jn->n", d, matrix[np.ix_(part, part)], d), 0.0))
+        freedom.append(np.where(d != 0, each[part], np.inf).min(axis=0))
+    return np.array(variances), np.array(freedom)
+
+
+def _connected(matrix: Floats) -> list[list[int]]:
+    """Return the numbers of the lines in parts between which nothing is correlated."""
+    left, parts = set(range(len(matrix))), []
+    while left:
+        part, found = set(), {min(left)}
+        while found:
+            part |= found
+            found = {int(other) for one in found for other in np.flatnonzero(matrix[one])} - part
+        parts.append(sorted(part))
+        left -= part
+    return parts
 
 
 def _rise(target: Target, value: Floats) -> Floats:

@@ -68,8 +68,9 @@ def worst_case(
 ) -> WorstCase:
     """Return the adverse and favourable extremes at every required condition.
 
-    Every line stands at the end of its tolerance that moves the result most, on its own: correlation groups do not
-    soften it. A tolerance of k·σ is taken at the k·σ it states. Raises SpecflowError as ``evaluate_budget``.
+    Every line stands at the end of its tolerance that moves the result most. The lines of one correlation group stand
+    all at their upper ends or all at their lower ones; correlations between groups do not soften it. A tolerance of
+    k·σ is taken at the k·σ it states. Raises SpecflowError as ``evaluate_budget``.
     """
     prepared = prepare(budget, snapshot, dictionary, values=values)
     check_bounds(prepared.chain)
@@ -99,14 +100,10 @@ def cut_notes(chain: Chain) -> list[str]:
 
 
 def _range(chain: Chain, output: Output, bars: Sequence[Bar], nominal: Floats) -> OutputRange:
-    low = _extreme(chain, output, -1)
-    high = _extreme(chain, output, +1)
-    words = "both ends evaluated at the corners of the tolerances"
-    if not output.is_monotonic:
-        words = (
-            f"{output.parameter} is not monotonic in every line: the ends were searched among the corners, and a "
-            "value inside the tolerances may go beyond them"
-        )
+    units = _units(chain)
+    low = _extreme(chain, output, units, -1)
+    high = _extreme(chain, output, units, +1)
+    is_exact, words = _trust(chain, output, units)
     served = tuple(held_between(bar, low, high) for bar in bars)
     return OutputRange(
         output.parameter,
@@ -114,51 +111,96 @@ def _range(chain: Chain, output: Output, bars: Sequence[Bar], nominal: Floats) -
         nominal,
         low,
         high,
-        output.is_monotonic,
+        is_exact,
         words,
         _parts(chain, output),
         served,
     )
 
 
-def _extreme(chain: Chain, output: Output, side: int) -> Floats:
+def _units(chain: Chain) -> list[list[int]]:
+    """Return the numbers of the lines that move, those of one correlation group together."""
+    units: dict[str, list[int]] = {}
+    for number, read in enumerate(chain.lines):
+        if moves(read.line):
+            units.setdefault(code_key(read.line.correlation_group) or f"#{number}", []).append(number)
+    return list(units.values())
+
+
+def _trust(chain: Chain, output: Output, units: Sequence[Sequence[int]]) -> tuple[bool, str]:
+    """Return whether the ends are the true extremes, and what they are in words."""
+    groups = [unit for unit in units if len(unit) > 1]
+    together = f"; together: {_listed(chain, groups)}" if groups else ""
+    if not output.is_monotonic:
+        return False, (
+            f"{output.parameter} is not monotonic in every line: the ends were searched among the corners, and a "
+            f"value inside the tolerances may go beyond them{together}"
+        )
+    slopes = slopes_at(chain, output, chain.nominal())
+    mixed = [unit for unit in groups if (slopes[unit].max(axis=0) * slopes[unit].min(axis=0) < 0).any()]
+    if mixed:
+        return False, (
+            f"lines that move together work against each other ({_listed(chain, mixed)}): both ends of the group were "
+            f"tried, and a value between them may go beyond{together}"
+        )
+    return True, f"both ends evaluated at the corners of the tolerances{together}"
+
+
+def _listed(chain: Chain, groups: Sequence[Sequence[int]]) -> str:
+    return "; ".join(" and ".join(chain.lines[number].line.place for number in unit) for unit in groups)
+
+
+def _extreme(chain: Chain, output: Output, units: Sequence[Sequence[int]], side: int) -> Floats:
     """Return the result (n,) with every line at the end of its tolerance that moves it to ``side``.
 
     The end is told by the sign of the slope, taken again at the corner found: a slope that is zero at nominal need not
-    be zero there. Where a law is not monotonic the corner is improved line by line.
+    be zero there; of a group by the sum of slope times tolerance of its lines. Where a law is not monotonic, or lines
+    move together, the corner is improved one after the other.
     """
     ends = [bounds(read) for read in chain.lines]
     values = chain.nominal()
     signs = np.zeros((len(chain.lines), chain.size), np.int8)
     for _ in range(_MOST_PASSES):
-        found = np.sign(slopes_at(chain, output, values) * side).astype(np.int8)
+        found = _wanted(chain, slopes_at(chain, output, values), units, side)
         found = np.where(found == 0, signs, found)
         if np.array_equal(found, signs):
             break
         signs = found
         values = _at_ends(chain, ends, signs)
     result = value_at(chain, output, values)
-    if output.is_monotonic:
+    if output.is_monotonic and all(len(unit) == 1 for unit in units):
         return result
-    return _searched(chain, output, side, ends, signs, result)
+    return _searched(chain, output, units, side, ends, signs, result)
+
+
+def _wanted(chain: Chain, slopes: Floats, units: Sequence[Sequence[int]], side: int) -> NDArray[np.int8]:
+    """Return which end every line that moves should stand at (lines, n): +1 the upper one, 0 where it is the same."""
+    found = np.zeros(slopes.shape, np.int8)
+    for unit in units:
+        up, down = np.zeros(slopes.shape[1]), np.zeros(slopes.shape[1])
+        for number in unit:
+            low, high = bounds(chain.lines[number])
+            up += slopes[number] * (high - chain.lines[number].values)
+            down += slopes[number] * (low - chain.lines[number].values)
+        found[unit] = np.sign((up - down) * side).astype(np.int8)
+    return found
 
 
 def _searched(
     chain: Chain,
     output: Output,
+    units: Sequence[Sequence[int]],
     side: int,
     ends: Sequence[tuple[Floats, Floats]],
     signs: NDArray[np.int8],
     best: Floats,
 ) -> Floats:
-    """Turn one line after the other to its other end as long as that helps somewhere."""
+    """Turn one line (or group) after the other to its other end as long as that helps somewhere."""
     for _ in range(_MOST_PASSES):
         improved = False
-        for number, read in enumerate(chain.lines):
-            if not moves(read.line):
-                continue
+        for unit in units:
             trial = signs.copy()
-            trial[number] = np.where(signs[number] == 0, 1, -signs[number])
+            trial[unit] = np.where(signs[unit] == 0, 1, -signs[unit])
             result = value_at(chain, output, _at_ends(chain, ends, trial))
             better = (result - best) * side > 1e-12
             if better.any():

@@ -65,7 +65,8 @@ _LEAST_TRIALS = 1_000
 ALL_WAYS = (Way.WORST_CASE, Way.RSS, Way.MONTE_CARLO)
 _ASSUMES = {
     Way.NOMINAL: "every line at its figure",
-    Way.WORST_CASE: "every line at its worse end at once, whatever the others do; k·σ at the k·σ stated",
+    Way.WORST_CASE: "every line at its worse end at once, whatever the others do, but lines of one correlation group "
+    "together; k·σ at the k·σ stated, cut where no block can be",
     Way.RSS: "lines independent unless a correlation is stated, law near to linear over the tolerances "
     f"(bend below {MOST_BEND:g} of the sum); of limits it is neither a k·σ nor guaranteed",
     Way.MONTE_CARLO: "the distributions and correlations of the lines as stated; one specimen at all conditions",

@@ -14,7 +14,7 @@ from specflow.budgets.knowledge import Knowledge, Rank
 from specflow.budgets.probe import Probe
 from specflow.budgets.reallocation import Reallocation, reallocate
 from specflow.model.block import Maturity
-from specflow.model.budget import Budget
+from specflow.model.budget import Budget, Correlation
 from specflow.parameters import load_dictionary
 from tests.budgets.chains import a_chain, project_of
 from tests.budgets.receiver import within
@@ -225,3 +225,43 @@ def test_slack_that_is_not_enough_is_said() -> None:
     assert math.isnan(found.part)
     assert "does not cover" in found.sentence
     assert found.closure.closes is False
+
+
+def spread_of(*tolerances: float, groups: tuple[str, ...], **fields: Any) -> float:
+    stages = [
+        {
+            "block": f"S{number}",
+            "gain": 10.0,
+            "more": {
+                "gain": {
+                    "tolerance": {"minus": amount, "plus": amount, "meaning": "k sigma", "k": 1.0},
+                    "correlation_group": group,
+                }
+            },
+        }
+        for number, (amount, group) in enumerate(zip(tolerances, groups, strict=True))
+    ]
+    budget = a_chain(*stages, parameter="gain", **fields)
+    return float(known(budget).served[0].spread[0])
+
+
+def test_spreads_of_lines_that_move_together_add_as_they_are() -> None:
+    """σ of 0.3 and 0.4 dB: 0.5 dB apart, 0.7 dB together, √(0.25 + 2·0.5·0.12) with a correlation of 0.5."""
+    assert spread_of(0.3, 0.4, groups=("", "")) == pytest.approx(0.5)
+    assert spread_of(0.3, 0.4, groups=("lot", "lot")) == pytest.approx(0.7)
+    between = (Correlation(first="heat", second="lot", coefficient=0.5),)
+    both = spread_of(0.3, 0.4, groups=("lot", "heat"), correlations=between)
+    assert both == pytest.approx(math.sqrt(0.25 + 0.12))
+
+
+def test_a_group_of_which_one_line_is_known_by_few_items_has_their_freedom() -> None:
+    group = {"correlation_group": "lot"}
+    budget = a_chain(
+        {"block": "A", "gain": 10.0, "more": {"gain": group}},
+        {"block": "B", "gain": 10.0, "more": {"gain": group | {
+            "tolerance": {"minus": 0.4, "plus": 0.4, "meaning": "k sigma", "k": 1.0}}}},
+        parameter="gain",
+    )  # fmt: skip
+    served = known(budget, knowledge(1, "gain", [9.0, 10.0, 11.0])).served[0]
+    assert served.spread[0] == pytest.approx(math.sqrt(4 / 3) + 0.4)
+    assert served.freedom[0] == pytest.approx(2.0)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 from typing import Any
 
 import numpy as np
@@ -9,11 +10,11 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from specflow.budgets import monte_carlo, rss, worst_case
+from specflow.budgets import evaluate_budget, line_key, monte_carlo, rss, worst_case
 from specflow.budgets.draws import CHUNK, draws_of
 from specflow.budgets.evaluate import prepare
 from specflow.errors import CalculationError
-from specflow.model.budget import Budget, Correlation
+from specflow.model.budget import Budget, BudgetLine, Correlation
 from specflow.parameters import load_dictionary
 from tests.budgets.chains import a_chain, project_of
 from tests.builders import (
@@ -468,3 +469,65 @@ def test_trials_tell_how_far_they_are() -> None:
             told=heard.append,
         )
     assert heard == 2 * [CHUNK, 2 * CHUNK, 2 * CHUNK + 5]
+
+
+def grouped(amount: float, group: str) -> dict[str, Any]:
+    return limits(amount) | {"correlation_group": group}
+
+
+def test_lines_that_move_together_reach_a_corner_together() -> None:
+    """Two gains of one lot add up; a gain and a loss that rise together work against each other."""
+    both = a_chain(
+        {"block": "A", "gain": 10.0, "more": {"gain": grouped(1.0, "lot")}},
+        {"block": "B", "gain": 10.0, "more": {"gain": grouped(0.5, "lot")}},
+        parameter="gain",
+    )
+    found = worst_case(both, project_of(both, limit=at_least(1)), DICTIONARY).of("gain")
+    assert (found.low[0], found.high[0], found.is_exact) == (pytest.approx(18.5), pytest.approx(21.5), True)
+    against = a_chain(
+        {"block": "A", "gain": 10.0, "more": {"gain": grouped(1.0, "heat")}},
+        {"block": "B", "attenuation": 3.0, "more": {"attenuation": grouped(1.5, "Heat")}},
+        parameter="gain",
+    )
+    found = worst_case(against, project_of(against, limit=at_least(1)), DICTIONARY).of("gain")
+    assert (found.low[0], found.high[0]) == (pytest.approx(6.5), pytest.approx(7.5))
+    assert not found.is_exact and "work against each other (A gain" in found.words
+
+
+@settings(max_examples=40, deadline=None)
+@given(
+    st.lists(
+        st.tuples(st.floats(0.0, 20.0), st.floats(0.2, 8.0), st.sampled_from(["", "a", "b"])),
+        min_size=2,
+        max_size=4,
+    )
+)
+def test_corners_of_groups_are_those_of_an_exhaustive_search(stages: list[tuple[float, float, str]]) -> None:
+    """Noise figure with gains and noise figures in groups: every combination of ends of groups is tried."""
+    budget = a_chain(
+        *(
+            {
+                "block": f"S{number}",
+                "gain": gain,
+                "noise_figure": nf,
+                "more": {"gain": grouped(0.5, group), "noise_figure": grouped(0.2, group and f"{group}n")},
+            }
+            for number, (gain, nf, group) in enumerate(stages)
+        )
+    )
+    snapshot = project_of(budget)
+    found = worst_case(budget, snapshot, DICTIONARY).of("noise_figure")
+    units: dict[str, list[BudgetLine]] = {}
+    for number, line in enumerate(budget.lines):
+        units.setdefault(line.correlation_group or f"#{number}", []).append(line)
+    results = []
+    for signs in itertools.product((-1, 1), repeat=len(units)):
+        moved = {
+            line_key(line): line.value.value + sign * line.tolerance.plus  # type: ignore[union-attr]
+            for sign, lines in zip(signs, units.values(), strict=True)
+            for line in lines
+        }
+        results.append(
+            evaluate_budget(budget, snapshot, DICTIONARY, values=moved).of("noise_figure").result[0]
+        )
+    assert found.low[0] == pytest.approx(min(results)) and found.high[0] == pytest.approx(max(results))
