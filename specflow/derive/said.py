@@ -80,7 +80,7 @@ def complete_settings(law: Law, said: Mapping[str, str]) -> dict[str, str]:
             options = f"; one of: {', '.join(setting.choices)}" if setting.choices else ""
             raise DocumentError(
                 f"the law {law.name} needs to be told {setting.name}: {setting.what}",
-                hint=f"say --set {name}=...{options}",
+                hint=f"say --set '{setting.name}=...'{options}",
             )
         found[setting.name] = _allowed(setting, text)
     return found
