@@ -55,7 +55,7 @@ def _check_size(source: Source, text: str, lines: list[str], layout: Layout) -> 
 
 def _layout(source: Source, lines: list[str], comments: set[int]) -> Layout:
     if 1 in comments and lines[0].lower().startswith("sep="):
-        delimiter = lines[0].strip()[-1]
+        delimiter = lines[0].rstrip("\r\n")[-1]
         layout = find_layout([line.replace(delimiter, "\t") for line in lines[1:] if line.strip()])
         return Layout(delimiter, layout.width, layout.decimal if delimiter != "," else ".")
     table = [line for number, line in enumerate(lines, start=1) if line.strip() and number not in comments]

@@ -16,9 +16,13 @@ DELIMITERS = ("\t", ";", ",", "|", BLANKS)
 
 SAMPLE_LINES = 400
 
+_MOST_SETTINGS = 6
+
 _NUMBER = re.compile(r"[<>≤≥]?\s*[+\-−]?(?:[0-9]+(?:[.,][0-9]*)?|[.,][0-9]+)(?:[eE][+\-−]?[0-9]+)?\s*%?")
 _WITH_COMMA = re.compile(r"[^,]*[0-9]*,[0-9]+[^,]*")
+_SETTING = re.compile(r"[^0-9:=,][^:=,]*[:=]\s*[+\-−]?[0-9]+")
 _COMMA_IN_NUMBER = re.compile(r"[0-9],[0-9]")
+_WITH_THOUSANDS = re.compile(r"[+\-−]?[0-9]{1,3}(?:[ \u00a0\u202f'][0-9]{3})+[.,][0-9]+")
 _LIKE_THOUSANDS = re.compile(r"[+\-−]?[0-9]{1,3},[0-9]{3}")
 
 
@@ -64,6 +68,26 @@ def split(line: str, delimiter: str) -> list[str]:
         return [field.strip() for field in line.split(delimiter)]
 
 
+def split_preamble(line: str) -> list[str]:
+    """The fields of a line of settings that is parted otherwise than the body: ``Start,10,MHz``.
+
+    A comma between digits ("23,5") may be a decimal mark there: such a line stays whole.
+    """
+    for delimiter in ("\t", ";", "|", ","):
+        fields = split(line, delimiter)
+        if 1 < len(fields) <= _MOST_SETTINGS and not (delimiter == "," and _COMMA_IN_NUMBER.search(line)):
+            return fields
+    return [line]
+
+
+def is_setting(line: str, field: str) -> bool:
+    """Whether a comma of the line may stand inside the number of a setting: ``Temp: 23,5 C`` parted at its comma."""
+    return (
+        _SETTING.fullmatch(field) is not None
+        and line.lstrip()[len(field) : len(field) + 2].strip(",").isdigit()
+    )
+
+
 def split_to_width(line: str, width: int, single_blanks: bool = False) -> list[str] | None:
     """The fields of a header line that is parted otherwise than the body: by whatever gives ``width`` fields.
 
@@ -107,7 +131,7 @@ def _score(sample: Sequence[str], delimiter: str) -> tuple[float, int]:
 
 def decimal_mark(fields: Sequence[str]) -> str:
     """The mark before decimals in these fields; ``""`` when each comma could as well stand between thousands."""
-    numbers = [field for field in fields if is_number(field)]
+    numbers = [field for field in fields if is_number(field) or _WITH_THOUSANDS.fullmatch(field)]
     commas = [number for number in numbers if "," in number]
     if not commas or any("." in number for number in numbers):
         return "."
@@ -115,12 +139,12 @@ def decimal_mark(fields: Sequence[str]) -> str:
 
 
 def _refuse_decimal_comma(sample: Sequence[str], width: int) -> None:
-    """``1,5,2,7`` under two titles: numbers without a decimal point, twice as many as there are titles."""
-    rows = [split(line, ",") for line in sample]
+    """``1,5,2,7`` or ``27,5,45`` under two titles: whole numbers, more of them than there are titles."""
+    rows = [split(line, ",") for line in sample if not any(mark in line for mark in ";\t|")]
     body = [row for row in rows if len(row) == width and all(map(is_number, row))]
     if len(body) < max(2, len(rows) // 2):
         return
     titles = [row for row in rows if not any(map(is_number, row))]
     whole = all(re.fullmatch(r"[+\-−]?[0-9]+", field) for row in body for field in row)
-    if whole and width % 2 == 0 and titles and len(titles[-1]) == width // 2:
+    if whole and titles and (len(titles[-1]) == width / 2 or 2 <= len(titles[-1]) < width):
         raise AmbiguousComma

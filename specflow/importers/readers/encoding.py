@@ -27,6 +27,9 @@ def decode(source: Source) -> tuple[str, list[str]]:
     if nuls := text.count("\0"):
         text = text.replace("\0", "")
         notes.append(f"{nuls} NUL characters were left out")
+    if marks := text.count("\ufeff"):
+        text = text.replace("\ufeff", "")
+        notes.append(f"{marks} byte-order marks inside the text were left out")
     text = text.replace("\r\n", "\n").replace("\r", "\n")
     sample = text[:_SAMPLE]
     control = sum(character < " " and character not in "\t\n\x0b\x0c\x1a\x1b" for character in sample)
@@ -49,12 +52,28 @@ def _decode(source: Source, notes: list[str]) -> str:
                 where=source.name,
                 hint="export the file again",
             ) from error
-        notes.append("the text is not UTF-8; it was read as Windows-1252")
-        # five bytes have no meaning in Windows-1252: they become U+FFFD, which no number contains
-        return content.decode("cp1252", "replace")
+        return _decode_lines(content, notes)
     if encoding and encoding != "utf-8-sig":
         notes.append(f"the text was read as {encoding.upper()}")
     return text
+
+
+def _decode_lines(content: bytes, notes: list[str]) -> str:
+    """Text that is not UTF-8 throughout: files to which several programs wrote hold lines of both encodings."""
+    lines, others, utf8 = [], 0, 0
+    for line in content.split(b"\n"):
+        try:
+            lines.append(line.decode())
+            utf8 += not line.isascii()
+        except UnicodeDecodeError:
+            # five bytes have no meaning in Windows-1252: they become U+FFFD, which no number contains
+            lines.append(line.decode("cp1252", "replace"))
+            others += 1
+    if utf8:
+        notes.append(f"{others} lines are not UTF-8, as others are; they were read as Windows-1252")
+    else:
+        notes.append("the text is not UTF-8; it was read as Windows-1252")
+    return "\n".join(lines)
 
 
 def _unmarked_utf16(content: bytes) -> str | None:

@@ -46,7 +46,9 @@ def read_large_text(source: Source, find_layout: FindLayout) -> Grid | None:
 
 
 def _is_plain(content: bytes, head: bytes) -> bool:
-    if content.startswith((b"\xff\xfe", b"\xfe\xff")) or b"\0" in content or _COUNTED.search(content):
+    if content.startswith((b"\xff\xfe", b"\xfe\xff")) or b"\0" in content or _UTF8_MARK in content:
+        return False
+    if b"#" in content and _COUNTED.search(content):
         return False
     return b'"' not in content[len(head) :] and content.count(b"\r") == content.count(b"\r\n")
 

@@ -6,7 +6,16 @@ import csv
 import io
 import re
 
-from specflow.importers.readers.delimiter import BLANKS, Layout, is_number, split, split_to_width
+from specflow.importers.readers.delimiter import (
+    BLANKS,
+    DELIMITERS,
+    Layout,
+    is_number,
+    is_setting,
+    split,
+    split_preamble,
+    split_to_width,
+)
 from specflow.importers.readers.stores import Value
 
 COMMENT_MARKS = ("#", "!", "%", "//")
@@ -53,16 +62,43 @@ class TextLines:
             rows[number - 1] = list(_at_width(fields, text, layout.width)) if text else []
 
     def _part_headers(self, rows: list[list[Value]], layout: Layout) -> None:
-        """Part header lines that use other separators than the body."""
+        """Part lines that use other separators than the body: headers, and settings above the table."""
         for place, row in enumerate(rows):
-            if row and len(row) != layout.width and place + 1 not in self.comments:
-                line = self._lines[place].strip()
-                if layout.delimiter == BLANKS:
-                    rows[place] = list(
-                        split_to_width(line, layout.width, single_blanks=True) or _words(line, row)
-                    )
-                elif len(row) == 1 and '"' not in line:
-                    rows[place] = list(_at_width([line], line, layout.width))
+            if not row or place + 1 in self.comments:
+                continue
+            line = self._lines[place].strip()
+            if layout.delimiter == BLANKS:
+                if len(row) != layout.width or any(str(field).endswith(",") for field in row):
+                    parted = split_to_width(line, layout.width, single_blanks=True)
+                    rows[place] = list(parted or _words(line, row))
+            elif layout.delimiter == "," and is_setting(line, str(row[0])):
+                rows[place] = [line]
+            elif len(row) == 1 and layout.width > 1 and '"' not in line:
+                rows[place] = list(_at_width([line], line, layout.width))
+            elif (other := _other_section(line, row, layout.delimiter)) is not None:
+                rows[place] = list(other)
+        self._part_settings(rows)
+
+    def _part_settings(self, rows: list[list[Value]]) -> None:
+        """Settings in a format of their own: at least two lines that are parted in the same way."""
+        whole = [
+            place for place, row in enumerate(rows) if len(row) == 1 and place + 1 not in self.comments
+        ]
+        parted = {place: fields for place in whole if len(fields := split_preamble(str(rows[place][0]))) > 1}
+        if len(parted) > 1:
+            for place, fields in parted.items():
+                rows[place] = list(fields)
+
+
+def _other_section(line: str, row: list[Value], delimiter: str) -> list[str] | None:
+    """The fields of a row of numbers in a section that another delimiter parts: ``1,5;2`` below a table with commas,
+    which cut at its comma would be 1 and ``5;2``."""
+    for other in DELIMITERS:
+        if other not in (delimiter, BLANKS) and other in line:
+            fields = split(line, other)
+            if all(map(is_number, fields)) and not all(is_number(str(field)) for field in row):
+                return fields
+    return None
 
 
 def _comment_rows(lines: list[str], first: str) -> set[int]:
@@ -91,7 +127,7 @@ def _comment_text(line: str) -> str | None:
 
 def is_separator_line(line: str) -> bool:
     """``sep=;`` at the head of a file says what parts its fields."""
-    return line.lower().startswith("sep=") and len(line.strip()) == len("sep=;")
+    return line.lower().startswith("sep=") and len(line.rstrip("\r\n")) == len("sep=;")
 
 
 def _is_data(line: str) -> bool:

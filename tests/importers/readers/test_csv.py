@@ -8,6 +8,7 @@ from hypothesis import strategies as st
 
 from specflow.importers.readers import Grid, open_grids
 from specflow.importers.readers.delimiter import find_layout
+from specflow.units import Reading, parse_reading
 from tests.importers.readers.workbooks import refused
 
 
@@ -59,6 +60,77 @@ def test_header_and_body_may_have_different_separators(tmp_path: Path) -> None:
         ["0", "-28.01", "-28.9"],
         ["0.04", "-7.39", "-7.39"],
     ]
+
+
+@pytest.mark.parametrize("mark", [",", ";", "\t", "|"])
+@pytest.mark.parametrize("delimiter", [",", "\t", ";", "  "])
+def test_settings_above_the_table_may_have_another_separator(
+    tmp_path: Path, mark: str, delimiter: str
+) -> None:
+    settings = "".join(f"{line}\n" for line in (f"Start{mark}10{mark}MHz", f"Stop{mark}20{mark}MHz"))
+    body = [("f (MHz)", "P (dBm)"), ("10", "-20.5"), ("15", "-21"), ("20", "-22"), ("25", "-23")]
+    table = "".join(delimiter.join(row) + "\n" for row in body)
+    grid = grid_of(tmp_path / "a.csv", f"Sweep of Monday\n{settings}\n{table}")
+    assert grid.rows[:3] == [["Sweep of Monday"], ["Start", "10", "MHz"], ["Stop", "20", "MHz"]]
+    assert grid.rows[4:] == [list(row) for row in body]
+
+
+def test_a_setting_with_a_decimal_comma_is_not_cut_at_it(tmp_path: Path) -> None:
+    text = "Temp: 23,5 C\nOffset=-0,25\nDate: 3 May, 2026\nf (MHz),P (dBm)\n10,-20.5\n15,-21\n"
+    grid = grid_of(tmp_path / "a.csv", text)
+    assert grid.rows[:3] == [["Temp: 23,5 C"], ["Offset=-0,25"], ["Date: 3 May", "2026"]]
+
+
+def test_a_second_section_may_have_another_separator(tmp_path: Path) -> None:
+    text = "f,P\n1,2\n2,3\n3,4\n\nx;y\n1,5;2\n2,5;3\n"
+    grid = grid_of(tmp_path / "a.csv", text)
+    assert grid.rows[5:] == [["x", "y"], ["1,5", "2"], ["2,5", "3"]]
+    assert grid.column_floats(1, 7, 9)[1] == [7, 8]
+
+
+def test_header_with_commas_above_columns_of_blanks(tmp_path: Path) -> None:
+    grid = grid_of(tmp_path / "a.dat", "freq, gain, phase\n 1.0   2.0   3.0\n 2.0   2.5   3.5\n")
+    assert grid.rows[0] == ["freq", "gain", "phase"]
+
+
+@pytest.mark.parametrize(
+    "text", ["f (GHz),P\n27,5,45\n27,6,46\n27,7,47\n", "f,P,Q\n1,5,2,3\n2,5,3,1\n3,5,4,9\n"]
+)
+def test_more_whole_numbers_than_titles_may_be_decimal_commas(tmp_path: Path, text: str) -> None:
+    (tmp_path / "a.csv").write_text(text)
+    assert "part both the fields and the decimals" in refused(lambda: open_grids(tmp_path / "a.csv"))
+
+
+def test_lines_of_two_encodings(tmp_path: Path) -> None:
+    content = "T (°C),P (dBµV)\n25,3\n".encode() + "30,4,café\n".encode("cp1252")
+    grid = grid_of(tmp_path / "a.csv", content)
+    assert grid.rows == [["T (°C)", "P (dBµV)"], ["25", "3"], ["30", "4", "café"]]
+    assert grid.notes == ("1 lines are not UTF-8, as others are; they were read as Windows-1252",)
+
+
+def test_marks_inside_the_text_are_left_out_and_counted(tmp_path: Path) -> None:
+    grid = grid_of(tmp_path / "a.csv", b"\xef\xbb\xbff,P\n1,2\n\xef\xbb\xbf3,4\n")
+    assert grid.rows[2] == ["3", "4"]
+    assert grid.notes == ("1 byte-order marks inside the text were left out",)
+
+
+def test_a_tab_may_be_named_by_the_separator_line(tmp_path: Path) -> None:
+    grid = grid_of(tmp_path / "a.csv", "sep=\t\nf\tP\n1.5\t2\n")
+    assert (grid.comment_rows, grid.rows[1:]) == ({1}, [["f", "P"], ["1.5", "2"]])
+
+
+@pytest.mark.parametrize(
+    ("text", "decimal", "value"),
+    [("1 234,5", ",", 1234.5), ("1'234.5", ".", 1234.5), ("1,234.5", ".", 1234.5), ("+1.5E+03", ".", 1500.0)],
+)
+def test_numbers_as_people_and_instruments_write_them(
+    tmp_path: Path, text: str, decimal: str, value: float
+) -> None:
+    grid = grid_of(tmp_path / "a.csv", f"f;P\n{text};2\n{text};3\n")
+    assert grid.decimal == decimal
+    reading = parse_reading(str(grid.value(2, 1)), decimal_comma=decimal == ",")
+    assert isinstance(reading, Reading)
+    assert (reading.lo, reading.hi) == (value, value)
 
 
 def test_header_words_among_runs_of_blanks(tmp_path: Path) -> None:
