@@ -12,11 +12,13 @@ from numpy.typing import NDArray
 from pydantic import ValidationError
 
 from specflow.exchange import digest
+from specflow.importers.measured.correction_doubts import note_earlier
 from specflow.importers.measured.rejects import cell_text
 from specflow.importers.measured.result import Role
 from specflow.importers.measured.source_says import stated_columns
 from specflow.importers.measured.work import TableWork
 from specflow.model.block import Block
+from specflow.model.correction import AppliedCorrection, Correction
 from specflow.model.evidence import ConditionColumn, EvidenceColumns, EvidenceTable, ValueColumn
 from specflow.model.requirement import Method, Requirement, Stage
 from specflow.model.source_statement import PeakList
@@ -28,7 +30,7 @@ _NOT_CONTENT = {"id", "file", "digest", "mapping", "mapping_revision", "accepted
 
 
 #: Content only where a table has it, so that tables without it keep their digests.
-_WHERE_SAID = {"stated", "peaks"}
+_WHERE_SAID = {"stated", "peaks", "applied"}
 
 
 @dataclass(frozen=True, slots=True)
@@ -43,16 +45,27 @@ class Identity:
     sheet: str
 
 
+@dataclass(frozen=True, slots=True)
+class Said:
+    """What a table is beyond its columns: a list of peaks, and corrected by what; ``corrections`` in words."""
+
+    peaks: PeakList | None = None
+    applied: Sequence[AppliedCorrection] = ()
+    corrections: Sequence[str] = ()
+
+
 def make_document(
     work: TableWork,
     identity: Identity,
     values: Sequence[ValueColumn],
     conditions: Sequence[ConditionColumn],
     columns: EvidenceColumns,
-    peaks: PeakList | None = None,
+    said: Said | None = None,
 ) -> EvidenceTable | None:
     """Return the document of a table with provisional ids; None, and a question, when something stated does not fit."""
     stated = work.stated
+    if said is None:
+        said = _uncorrected(work)
     try:
         document = EvidenceTable(
             id=PROVISIONAL_TABLE,
@@ -74,21 +87,32 @@ def make_document(
             procedure_revision=stated.text("procedure_revision"),
             performed_on=stated.day("date"),
             equipment=tuple(stated.equipment),
-            corrections=tuple(filter(None, [stated.text("corrections")])),
+            corrections=tuple(said.corrections),
+            applied=tuple(said.applied),
             simulation_model=stated.text("model"),
             simulation_version=stated.text("model_version"),
             simulation_validated=stated.text("validated"),
             hardware_note=stated.text("hardware"),
             left_out=work.rejects.left_out(),
             stated=stated_columns(work),
-            peaks=peaks,
+            peaks=said.peaks,
         )
     except ValidationError as error:
         fault = error.errors()[0]
         what = f"{'.'.join(map(str, fault['loc']))}: {fault['msg']}"
         work.ask("", "", what, "correct what is stated for the table")
         return None
+    note_earlier(work, document)
     return document.model_copy(update={"digest": content_digest(document, columns)})
+
+
+def _uncorrected(work: TableWork) -> Said:
+    """A table whose readings take no correction (S-parameters): one that is named is not passed over in silence."""
+    text = work.stated.text("corrections")
+    if text and work.context.snapshot.find(Correction, text.split(",")[0].strip()) is not None:
+        what = f"the correction {text} is not added to a matrix of S-parameters"
+        work.ask("correction", "", what, "de-embed it at the instrument, or derive the quantity and correct that")
+    return Said(corrections=tuple(filter(None, [text])))
 
 
 def content_digest(table: EvidenceTable, columns: EvidenceColumns) -> str:

@@ -3,14 +3,17 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from dataclasses import dataclass
 from typing import TypeVar
 
 import numpy as np
 
 from specflow.importers.measured.axis import add_axis
+from specflow.importers.measured.column import ColumnMeaning
 from specflow.importers.measured.conditions import merged_items, read_conditions
 from specflow.importers.measured.context import Context
-from specflow.importers.measured.document import Identity, make_document
+from specflow.importers.measured.corrections import with_corrections
+from specflow.importers.measured.document import Identity, Said, make_document
 from specflow.importers.measured.facts import states_something
 from specflow.importers.measured.header_text import header_key
 from specflow.importers.measured.located import LocatedTable
@@ -50,7 +53,15 @@ def collected(located: LocatedTable, context: Context, person: Mapping[str, str]
     )
 
 
-def read_table(located: LocatedTable, context: Context, person: Mapping[str, str]) -> MeasuredTable:
+@dataclass(frozen=True, slots=True)
+class ReadTable:
+    """A table as read, and what its columns were taken for."""
+
+    table: MeasuredTable
+    meanings: tuple[ColumnMeaning, ...]
+
+
+def read_table(located: LocatedTable, context: Context, person: Mapping[str, str]) -> ReadTable:
     """Read one table; it has no document while a question is open or when no row is left."""
     table, mapping, key = located.table, located.read_as, located.key
     stated = collected(located, context, person)
@@ -75,7 +86,7 @@ def read_table(located: LocatedTable, context: Context, person: Mapping[str, str
     work.notes += notes
     title = mapping.title or located.preamble.title
     document, columns = _evidence(work, key, title, sheet)
-    return MeasuredTable(
+    read = MeasuredTable(
         sheet=sheet,
         place=table.place,
         title=title,
@@ -93,6 +104,7 @@ def read_table(located: LocatedTable, context: Context, person: Mapping[str, str
         document=document,
         columns=columns,
     )
+    return ReadTable(read, work.meanings)
 
 
 def _asked_of_columns(work: TableWork) -> list[Question]:
@@ -110,7 +122,7 @@ def _note_idle_entries(work: TableWork) -> None:
         map(work.table.grid.column_name, work.table.unnamed)
     )
     keys = {header_key(header.text) for header in headers}
-    for entry in work.mapping.columns:
+    for entry in work.mapping.columns if not work.table.part else ():
         there = any(entry.is_about(header.text, header.letter) for header in headers)
         if not there and not (entry.column.upper() in letters and not entry.header):
             work.notes.append(
@@ -237,13 +249,16 @@ def _evidence(
     identity = Identity(block, method, stage, key, title, sheet)
     work.findings += slip_findings(work, columns, values.documents)
     columns, documents = by_row_kind(work, columns, values.documents)
+    corrected = with_corrections(work, columns, documents)
+    columns, documents = corrected.columns, corrected.values
     peaks = read_peak_list(work, title)
     if peaks is not None:
         grown = with_floors(work, peaks, columns, documents)
         columns, documents = grown.columns, grown.values
     document = None
     if not work.questions:
-        document = make_document(work, identity, documents, conditions.documents, columns, peaks)
+        said = Said(peaks, corrected.applied, corrected.words)
+        document = make_document(work, identity, documents, conditions.documents, columns, said)
     return (None, None) if document is None else (document, columns)
 
 

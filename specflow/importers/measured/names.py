@@ -48,6 +48,7 @@ NAMES: Mapping[str, tuple[str, ...]] = {
     "uncertainty": ("uncertainty", "measurement uncertainty", "mu", "u", "expanded uncertainty",
                     "standard uncertainty"),
     "temperature": (),
+    "corrected": (),
     "corrections": ("correction", "corrections", "corrections applied"),
 }  # fmt: skip
 

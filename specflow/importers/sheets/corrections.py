@@ -25,9 +25,9 @@ LAYOUT = SheetLayout(
     title="Corrections",
     aliases=("Correction tables", "Correction factors", "Cable losses", "Path losses"),
     intro=(
-        "What a cable, a probe or an antenna adds to every reading, by frequency. One row a frequency; rows with one ID "
-        "are one table. Applied when a file is attached with --state correction=ID: linear in dB between the rows, never "
-        "beyond them."
+        "What a cable, a probe or an antenna adds to every reading, by frequency. One row a frequency; rows with one "
+        "ID are one table. Applied when a file is attached with --state correction=ID: linear in dB between the rows, "
+        "never beyond them."
     ),
     columns=(
         MARK_COLUMN,
