@@ -68,7 +68,7 @@ def requirement_card(
 
 
 def proved_words(status: RequirementStatus) -> str:
-    """Return how far a requirement is proved: failing points, those without evidence and undecided ones are counted apart."""
+    """Return how far a requirement is proved; what fails, has no evidence or is undecided is counted apart."""
     if status.n == 0:
         return "no required points"
     counts = (

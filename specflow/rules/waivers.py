@@ -46,7 +46,7 @@ def waiver_requested(facts: Facts) -> Iterator[Found]:
 def unbounded_waiver(facts: Facts) -> Iterator[Found]:
     """An approved waiver names no end or no approver.
 
-    Why: an acceptance without a bound outlives its reason, and one without a name binds nobody.
+    Why: an acceptance without a bound outlives its reason; one without a name binds nobody, and covers nothing.
     Fails: approved, without a date on which it runs out.
     Passes: it names who approved it and when it runs out.
     Do: add the approver and the date, or the event by a date that is sure to cover it.

@@ -1,10 +1,10 @@
 """Waivers and deviations: which failing points they cover, and whether one has lapsed or is exceeded.
 
-A waiver covers a failing point when it is approved and in date, was written against this revision of the requirement,
-and *every* failing reading that stands there is of an item it names (or it names none), lies where its conditions hold,
-and meets what it permits under the same decision rule. The readings are looked at one by one: along a range, or on
-both sides of a limit, the one that governs need not be the one that goes beyond. A permitted value that is not settled
-(TBR, TBD) permits nothing. A waiver closes; it never makes compliant.
+A waiver covers a failing point when it is approved, by somebody who is named, and in date, was written against this
+revision of the requirement, and *every* failing reading that stands there is of an item it names (or it names none),
+lies where its conditions hold, and meets what it permits under the same decision rule. The readings are looked at one
+by one: along a range, or on both sides of a limit, the one that governs need not be the one that goes beyond. A
+permitted value that is not settled (TBR, TBD) permits nothing. A waiver closes; it never makes compliant.
 """
 
 from __future__ import annotations
@@ -80,6 +80,8 @@ def waiving(
 def _lapsed(waiver: Waiver, requirement: Requirement, as_of: date) -> str:
     if waiver.state == "lapsed":
         return "has lapsed"
+    if not waiver.approver:
+        return "is said to be approved and names nobody who approved it"
     if waiver.expires_on is not None and waiver.expires_on < as_of:
         return f"expired on {waiver.expires_on}"
     if waiver.requirement_revision != requirement.revision:

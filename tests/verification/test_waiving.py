@@ -36,6 +36,13 @@ def approved(**fields: object) -> Waiver:
     return a_waiver(state="approved", approver="the board", **fields)
 
 
+def test_a_waiver_that_nobody_approved_closes_nothing_and_says_so() -> None:
+    status = status_of(a_waiver(state="approved"), T_1=some_evidence((19.5, 21.0, 21.0)))
+    assert status.close_out is CloseOut.OPEN and status.label is Label.WAIVER_EXCEEDED
+    assert status.close_out_reason == "waiver W-1 is said to be approved and names nobody who approved it"
+    assert status_of(approved(), T_1=some_evidence((19.5, 21.0, 21.0))).close_out is CloseOut.CLOSED
+
+
 def over_range(waiver: Waiver, values: tuple[float, float, float], *documents: Document) -> RequirementStatus:
     """Return the status of readings at 27.5, 28.75 and 30 GHz of a required range."""
     return status_of(waiver, RANGE, *documents, T_1=some_evidence(values))
