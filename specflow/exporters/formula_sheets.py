@@ -10,6 +10,7 @@ from textwrap import wrap
 from typing import Any
 
 from specflow.model.formula_sheet import CellLook, FormulaCell, FormulaSheet
+from specflow.model.origin import column_letters
 
 LOOKS: dict[CellLook, dict[str, Any]] = {
     CellLook.PLAIN: {},
@@ -39,6 +40,12 @@ def write_formula_sheet(book: Any, sheet: FormulaSheet, name: str) -> None:
             if look not in formats:
                 formats[look] = book.add_format(LOOKS[cell.look] | _number_look(*look))
             _write(target, row, column, cell, formats[look])
+    for one in sheet.choices:
+        letters = column_letters(one.list_column + 1)
+        source = f"=${letters}${one.first_row + 1}:${letters}${one.last_row + 1}"
+        target.data_validation(
+            one.row, one.column, one.row, one.column, {"validate": "list", "source": source}
+        )
     if sheet.frozen_rows:
         target.freeze_panes(sheet.frozen_rows, 0)
     target.set_landscape()

@@ -33,6 +33,16 @@ class FormulaCell(Document):
     format: str = "0.00"
 
 
+class Choice(Document):
+    """A cell whose text is one of those in a column of the same sheet; rows and columns count from 0, ends included."""
+
+    row: int
+    column: int
+    list_column: int
+    first_row: int
+    last_row: int
+
+
 class FormulaSheet(Document):
     """Rows of cells, None where a cell is empty; ``widths`` are those of the columns in characters."""
 
@@ -40,3 +50,4 @@ class FormulaSheet(Document):
     widths: tuple[int, ...] = ()
     frozen_rows: int = 0
     rows: tuple[tuple[FormulaCell | None, ...], ...]
+    choices: tuple[Choice, ...] = ()

@@ -10,13 +10,15 @@ import math
 from collections.abc import Callable, Sequence
 from functools import partial
 
+import numpy as np
+
 from specflow.model.budget import Law
 from specflow.model.budget_outcome import BudgetOutcome, LineOutcome
 from specflow.model.formula_sheet import CellLook
 from specflow.reports.budget import FIGURE_TITLES, position_words, tolerance_words
 from specflow.reports.calculation_forms import taken_term
 from specflow.reports.calculation_further import dc_columns, interference_columns
-from specflow.reports.calculation_grid import Grid, Maker, Term, cell_name, plain
+from specflow.reports.calculation_grid import Floats, Grid, Maker, Term, cell_name, plain
 from specflow.reports.calculation_image import image_columns
 
 Named = Callable[[str], str]
@@ -85,12 +87,10 @@ class ChainTable:
             return
         self.headers("", "Given for the chain", "Value", "Unit")
         if outcome.levels is not None and not self._stated("source_level"):
-            self._fix("level", "Level at the input", float(outcome.levels[0, self.place]), "dBm")
+            self._fix("level", "Level at the input", outcome.levels[0], "dBm")
         if outcome.source_k is not None:
             if not self._stated("source_k"):
-                self._fix(
-                    "source", "Noise temperature of what feeds it", float(outcome.source_k[self.place]), "K"
-                )
+                self._fix("source", "Noise temperature of what feeds it", outcome.source_k, "K")
             self._fix("t0", "Reference temperature", T0, "K")
             self._fix("k", "Boltzmann constant", BOLTZMANN, "J/K", "0.000000E+00")
         if budget.bandwidth_hz is not None:
@@ -101,9 +101,9 @@ class ChainTable:
             )
         self.row += 1
 
-    def _fix(self, key: str, title: str, value: float, unit: str, format: str = "0.00##") -> None:
+    def _fix(self, key: str, title: str, value: float | Floats, unit: str, format: str = "0.00##") -> None:
         self.grid.text(self.row, 1, title)
-        self.fixed[key] = self.grid.number(self.row, 2, value, format=format)
+        self.fixed[key] = self.grid.by_point(self.row, 2, np.atleast_1d(value), title, format=format)
         self.grid.text(self.row, 3, unit)
         self.row += 1
 
@@ -119,7 +119,8 @@ class ChainTable:
             self.grid.number(self.row, 0, line.position, CellLook.PLAIN, "0")
             self.grid.text(self.row, 1, position_words(self.outcome, one.row))
             self.grid.text(self.row, 2, self.named(line.parameter))
-            stated = self.grid.number(self.row, 3, float(one.taken[self.place]))
+            name = f"{position_words(self.outcome, one.row)}, {self.named(line.parameter)} [{one.unit}]"
+            stated = self.grid.by_point(self.row, 3, one.taken, name)
             self.grid.text(self.row, 4, one.unit)
             self.grid.text(self.row, 5, tolerance_words(line))
             self.grid.text(self.row, 8, line.source)
@@ -251,8 +252,9 @@ class ChainTable:
     def _temperature(self, at: int, row: int) -> None:
         """Put the physical temperature of a position that makes the noise of its loss; 290 K where none is stated."""
         if self.outcome.positions[row].passive and "t0" in self.fixed:
-            kelvin = float(self.outcome.temperature_k[row, self.place])
-            self.temperatures[row] = self.grid.number(at, 3, T0 if math.isnan(kelvin) else kelvin)
+            kelvin = self.outcome.temperature_k[row]
+            name = f"{position_words(self.outcome, row)}, physical temperature [K]"
+            self.temperatures[row] = self.grid.by_point(at, 3, np.where(np.isnan(kelvin), T0, kelvin), name)
 
     def _known(self, key: str, row: int) -> list[Term]:
         return [term for term in self.figures[key][: row + 1] if term is not None]

@@ -6,9 +6,14 @@ import math
 from collections.abc import Callable
 from dataclasses import dataclass, field
 
+import numpy as np
+from numpy.typing import NDArray
+
 from specflow.model.formula_sheet import CellLook, FormulaCell
 from specflow.model.origin import column_letters
 from specflow.reports.figures import DASH
+
+Floats = NDArray[np.float64]
 
 
 @dataclass(frozen=True, slots=True)
@@ -40,11 +45,26 @@ Maker = Callable[[int, Term], Term | None]
 """Makes the cell of a column at one position, from its row and the cell of its number of elements."""
 
 
+@dataclass(frozen=True, slots=True)
+class Varying:
+    """A number that is another at every condition point: its place, what it is, and its values (n,)."""
+
+    row: int
+    column: int
+    title: str
+    values: Floats
+
+
 @dataclass(slots=True)
 class Grid:
-    """Rows being filled; a cell put there returns the term by which others refer to it."""
+    """Rows being filled; a cell put there returns the term by which others refer to it.
 
+    ``place`` is the condition point whose numbers are put; ``varying`` are those that others have differently.
+    """
+
+    place: int = 0
     rows: list[list[FormulaCell | None]] = field(default_factory=list)
+    varying: list[Varying] = field(default_factory=list)
 
     def put(self, row: int, column: int, cell: FormulaCell) -> None:
         """Put a cell in its place."""
@@ -67,6 +87,20 @@ class Grid:
         else:
             self.text(row, column, "no bound" if math.isinf(value) else DASH, look)
         return Term(cell_name(row, column, fixed=True), value)
+
+    def by_point(
+        self,
+        row: int,
+        column: int,
+        values: Floats,
+        title: str,
+        look: CellLook = CellLook.INPUT,
+        format: str = "0.00##",
+    ) -> Term:
+        """Put the number (n,) or (1,) of the condition point, and note it where it differs between points."""
+        if len(values) > 1 and not np.array_equal(values, np.full(len(values), values[0]), equal_nan=True):
+            self.varying.append(Varying(row, column, title, values))
+        return self.number(row, column, float(values[self.place if len(values) > 1 else 0]), look, format)
 
     def formula(
         self, row: int, column: int, term: Term, look: CellLook = CellLook.FORMULA, format: str = "0.0000"

@@ -16,14 +16,15 @@ from specflow.reports.calculation_grid import cell_name, plain
 from specflow.reports.calculation_sheet import calculation_sheet
 from specflow.workflows.budget_outcome import FORMS, HowToCompute, budget_outcome
 from tests import receiver
-from tests.budgets.chains import a_chain, project_of
+from tests.budgets.chains import POZAR_10_2, a_chain, project_of
 from tests.builders import a_budget, a_budget_line, a_quantity, at_most
 
 NAMED = titles(receiver.DICTIONARY)
 NOMINAL = HowToCompute(ways=())
 ALL = tuple(receiver.UNITS)
 FORMULA = re.compile(
-    r'=(?:SUM|SUMSQ|SUMPRODUCT|LOG10|SQRT|EXP|RADIANS|IF|IFERROR|MIN|"no bound"|\$[A-Z]+\$\d+|'
+    r'=(?:SUM|SUMSQ|SUMPRODUCT|LOG10|SQRT|EXP|RADIANS|IF|IFERROR|MIN|INDEX|MATCH|COUNT|ISNUMBER|"no bound"|"–"|'
+    r"1E\+99|\$[A-Z]+\$\d+|"
     r"\d+(?:\.\d+)?(?:e-?\d+)?|[-+*/^(),:=])+"
 )
 
@@ -57,6 +58,29 @@ def test_image_noise_is_followed_by_hand_along_two_conversions() -> None:
     made = calculation_sheet(receiver.outcome(budget, NOMINAL, ALL), 3, NAMED)
     assert any(cell.text == "NF with image [dB]" for cell in cells(made))
     assert max(differences(made)) < 1e-9
+
+
+def test_one_cell_chooses_the_condition_point_of_the_whole_sheet() -> None:
+    """What differs between points is taken from the table; what does not stays a given value in its place."""
+    found = receiver.outcome(receiver.a_receiver(*ALL), NOMINAL, ALL)
+    made = calculation_sheet(found, 1, NAMED)
+    (choice,) = made.choices
+    listed = [made.rows[row][choice.list_column] for row in range(choice.first_row, choice.last_row + 1)]
+    assert [cell.text for cell in listed if cell is not None] == list(found.places)
+    chooser = made.rows[choice.row][choice.column]
+    assert chooser is not None and chooser.text == found.places[1] and chooser.look is CellLook.INPUT
+    taken = [cell for cell in cells(made) if cell.formula.startswith("=INDEX")]
+    kelvin = [cell for cell in taken if cell.look is CellLook.INPUT]
+    assert kelvin and all(cell.number is not None for cell in taken)
+    same = calculation_sheet(replace(found, places=("one",) * len(found.places)), 1, NAMED)
+    assert len({cell.text for cell in cells(same) if cell.text.endswith(": one")}) == len(found.places)
+
+
+def test_a_single_point_is_not_chosen() -> None:
+    budget = a_chain(*POZAR_10_2)
+    found = budget_outcome(budget, project_of(budget), receiver.DICTIONARY, NOMINAL)
+    made = calculation_sheet(found, 0, NAMED)
+    assert made.choices == () and not any("INDEX" in cell.formula for cell in cells(made))
 
 
 def test_no_quantity_of_a_cascade_is_left_out() -> None:
