@@ -6,7 +6,8 @@ from collections.abc import Iterator
 
 from specflow.model.base import code_key
 from specflow.rules.base import Found
-from specflow.rules.facts import Facts
+from specflow.rules.facts import Facts, has_no_evidence
+from specflow.rules.words import counted
 
 
 def not_planned(facts: Facts) -> Iterator[Found]:
@@ -17,10 +18,12 @@ def not_planned(facts: Facts) -> Iterator[Found]:
     Passes: one activity at least is planned for it, or it is met by lower-level closure alone.
     Do: plan an activity: method, stage, tier and the hardware that earns credit.
     """
-    for requirement, _ in facts.defined:
-        planned = facts.snapshot.activities_of.get(code_key(requirement.id), ())
-        if not any(activity.planned for activity in planned):
-            yield Found(requirement.id, "no verification is planned", origin=requirement.origin)
+    for requirement, status in facts.defined:
+        if not facts.is_planned(requirement):
+            message = "no verification is planned"
+            if has_no_evidence(status):  # one cause, one finding: ``unverified`` is about what was planned
+                message += f", and there is no evidence at any of {counted(status.n, 'required point')}"
+            yield Found(requirement.id, message, origin=requirement.origin)
 
 
 def outdated_activity(facts: Facts) -> Iterator[Found]:

@@ -87,6 +87,10 @@ class Facts:
         """Return the status of a requirement, None where it was not computed."""
         return self.results.statuses.get(code_key(requirement.id))
 
+    def is_planned(self, requirement: Requirement) -> bool:
+        """Whether anybody planned a verification of it."""
+        return any(one.planned for one in self.snapshot.activities_of.get(code_key(requirement.id), ()))
+
     def children(self, requirement: Requirement) -> Sequence[Requirement]:
         """Return the requirements that name this one as a parent."""
         return self.snapshot.children_of.get(code_key(requirement.id), ())
@@ -194,6 +198,11 @@ class Facts:
 def is_undefined(requirement: Requirement) -> bool:
     """Whether the limit has no number yet, or a part of it has none."""
     return requirement.limit.state is LimitState.TBD or undefined_in(requirement.limit.tree)
+
+
+def has_no_evidence(status: RequirementStatus) -> bool:
+    """Whether nothing was ever recorded at any required point; one that cannot be judged at all is another matter."""
+    return bool(status.activities) and not status.standing
 
 
 def shown(activity: ActivityResult) -> PointResults | None:

@@ -12,20 +12,20 @@ from specflow.model.declared import DeclaredValue
 from specflow.model.requirement import Requirement
 from specflow.model.verdict import ActivityResult, PointResults, RequirementStatus
 from specflow.rules.base import Found
-from specflow.rules.facts import Facts, shown
+from specflow.rules.facts import Facts, has_no_evidence, shown
 from specflow.rules.words import MOST_LISTED, counted, listed
 
 
 def unverified(facts: Facts) -> Iterator[Found]:
-    """No evidence at all stands at any required point.
+    """A verification is planned, and no evidence at all stands at any required point.
 
     Why: a limit without evidence is a hope; it closes no review and hides the risk until late.
     Fails: R-1 limits the gain at three frequencies and no table holds a gain of that block there.
-    Passes: one reading stands at one of the three frequencies (that is then partially verified).
+    Passes: one reading stands at one of the three frequencies (that is then partially verified); or nothing is planned.
     Do: attach a result file; where one is attached, look among the mismatches why it does not serve.
     """
     for requirement, status in facts.defined:
-        if status.activities and not status.standing:
+        if has_no_evidence(status) and facts.is_planned(requirement):
             yield Found(
                 requirement.id,
                 f"no evidence at any of {counted(status.n, 'required point')}",

@@ -31,9 +31,9 @@ def test_it_lists_findings_and_ends_with_one_when_they_are_grave(command: Comman
     outcome = command("check", "--as-of", "2026-06-01")
     assert outcome.code == ExitCode.FINDINGS
     rules = {line.split()[1] for line in outcome.out.splitlines()[2:] if line.strip()}
-    assert rules == {"unverified", "no-conditions", "not-planned"}
+    assert rules == {"no-conditions", "not-planned"}
     assert (
-        "3 findings (0 error, 3 warning, 0 info); 3 at warning or above; judged as of 2026-06-01"
+        "2 findings (0 error, 2 warning, 0 info); 2 at warning or above; judged as of 2026-06-01"
         in outcome.err
     )
 
@@ -47,9 +47,9 @@ def test_a_higher_threshold_ends_clean_and_shows_the_same(command: Command) -> N
 
 @pytest.mark.usefixtures("project")
 def test_only_the_rules_named_are_shown_and_counted(command: Command) -> None:
-    outcome = command("check", "--rule", "Unverified")
+    outcome = command("check", "--rule", "Not-Planned")
     assert outcome.code == ExitCode.FINDINGS
-    assert "no evidence at any of 1 required point" in outcome.out
+    assert "there is no evidence at any of 1 required point" in outcome.out
     assert "no-conditions" not in outcome.out
     quiet = command("check", "--rule", "failing")
     assert (quiet.code, quiet.out) == (ExitCode.CLEAN, "")
@@ -57,22 +57,22 @@ def test_only_the_rules_named_are_shown_and_counted(command: Command) -> None:
 
 @pytest.mark.usefixtures("project")
 def test_explaining_adds_why_and_what_to_do(command: Command) -> None:
-    assert "Attach a result file" not in command("check").out
+    assert "Plan an activity" not in command("check").out
     explained = command("check", "--explain").out
-    assert "Attach a result file" in explained
-    assert "A limit without evidence is a hope" in explained
+    assert "Plan an activity" in explained
+    assert "nobody books the chamber" in explained
 
 
 @pytest.mark.usefixtures("project")
 def test_json_has_all_parts_of_a_finding(command: Command) -> None:
-    outcome = command("check", "--json", "--rule", "unverified", "--as-of", "2026-06-01")
+    outcome = command("check", "--json", "--rule", "not-planned", "--as-of", "2026-06-01")
     assert outcome.code == ExitCode.FINDINGS
     data = json.loads(outcome.out)
     assert data["as_of"] == "2026-06-01"
     assert data["totals"] == {"error": 0, "warning": 1, "info": 0}
     assert data["grave"] == 1
     (finding,) = data["findings"]
-    assert (finding["rule"], finding["severity"], finding["subject"]) == ("unverified", "warning", "R-1")
+    assert (finding["rule"], finding["severity"], finding["subject"]) == ("not-planned", "warning", "R-1")
     assert finding["origin"]["file"] == "reqs.xlsx"
 
 
