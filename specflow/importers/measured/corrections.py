@@ -17,12 +17,13 @@ from numpy.typing import NDArray
 
 from specflow.errors import UnitError
 from specflow.importers.measured.correction_doubts import doubts_of
+from specflow.importers.measured.correction_units import unit_after
 from specflow.importers.measured.stated import MAPPING, PERSON
 from specflow.importers.measured.work import TableWork
 from specflow.model.columns import TextColumn
 from specflow.model.correction import AppliedCorrection, Correction
 from specflow.model.evidence import EvidenceColumns, ValueArrays, ValueColumn
-from specflow.units import Quantity, Unit, add, converter, format_unit, parse_unit
+from specflow.units import converter, format_unit, parse_unit
 
 Floats = NDArray[np.float64]
 
@@ -115,7 +116,7 @@ def _add(work: TableWork, correction: Correction, done: Corrected, place: int) -
     u, note = _combined(arrays.u, spread, there)
     low = arrays.low + step
     high = low if arrays.high is arrays.low else arrays.high + step
-    unit = format_unit(_unit_after(value.unit, correction.unit))
+    unit = format_unit(unit_after(value.unit, correction.unit))
     words = f"{said_of(correction)}: {_range(step[there])} {correction.unit} added, linear in dB over frequency; {note}"
     raw = f"{value.name} as read"
     if raw not in done.columns.extra:
@@ -171,19 +172,12 @@ def _problem(
             "a correction is never extrapolated: calibrate it over the whole range, or split the table",
         )
     try:
-        _unit_after(value.unit, correction.unit)
+        unit_after(value.unit, correction.unit)
     except UnitError as error:
         return f"{correction.id} is in {correction.unit}, the readings in {value.unit}: {error.message}", (
             "a correction in dB is added to readings in dB: export them so"
         )
     return None
-
-
-def _unit_after(unit: str, correction: str) -> Unit:
-    written = parse_unit(unit)
-    if not written.is_log:
-        raise UnitError("a reading in a linear unit")
-    return add(Quantity(0.0, written), Quantity(0.0, parse_unit(correction))).unit
 
 
 def _hertz(columns: EvidenceColumns) -> Floats | None:

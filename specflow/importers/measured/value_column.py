@@ -5,6 +5,7 @@ from __future__ import annotations
 from specflow.errors import UnitError
 from specflow.importers.measured.column import ColumnMeaning, Heading
 from specflow.importers.measured.context import Context
+from specflow.importers.measured.correction_units import unit_when_corrected
 from specflow.importers.measured.quantity_text import NamedQuantity, density_of
 from specflow.importers.measured.result import Role
 from specflow.importers.measured.stated import Stated
@@ -59,7 +60,9 @@ def value_of(
     density = density_of(parameter, unit.unit, context.dictionary)
     if density is not None:
         parameter, reason = density, f"{reason}, in {unit.unit} its density"
-    if not suits(parameter, unit.unit):
+    if not suits(parameter, unit.unit) and not suits(
+        parameter, unit_when_corrected(unit.unit, stated, context)
+    ):
         what = (
             f"{parameter.title} in {unit.unit}; {_with_article(parameter.title)} is {_kind_words(parameter)}"
         )
