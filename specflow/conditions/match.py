@@ -103,6 +103,9 @@ def _spans_within(axis: Axis, records: Columns) -> Spans | None:
         spans.high >= min(extent.low, extent.start_by)
     )
     speaks &= spans.gap <= gap
+    if spans.undivided is not None:
+        covers = (spans.low <= extent.start_by) & (spans.high >= extent.end_from)
+        speaks &= covers | ~spans.undivided
     low = np.where(speaks, np.clip(spans.low, extent.low, extent.high), np.nan)
     high = np.where(speaks, np.clip(spans.high, extent.low, extent.high), np.nan)
     return Spans(low, high, spans.gap, axis.unit)

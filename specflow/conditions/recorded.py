@@ -6,6 +6,7 @@ or in a unit of another kind, is as good as unstated, and the reason can be aske
 
 from __future__ import annotations
 
+from dataclasses import replace
 from functools import lru_cache
 
 import numpy as np
@@ -51,9 +52,9 @@ def spans_in(spans: Spans | None, unit: str, size: int) -> Spans:
         return spans
     step, difference = conversion(spans.unit, unit), conversion(spans.unit, unit, difference=True)
     if isinstance(step, str) or isinstance(difference, str):
-        return Spans(nothing, nothing, nothing, unit, spans.silent)
+        return Spans(nothing, nothing, nothing, unit, spans.silent, spans.undivided)
     low, high, gap = step(spans.low), step(spans.high), difference(spans.gap)
-    return Spans(np.asarray(low), np.asarray(high), np.asarray(gap), unit, spans.silent)
+    return replace(spans, low=np.asarray(low), high=np.asarray(high), gap=np.asarray(gap), unit=unit)
 
 
 def recorded_words(records: Columns, name: str) -> TextColumn | None:

@@ -87,8 +87,8 @@ class Law:
     ``takes_bounds``: readings that are intervals ("< -90") may enter. ``takes_repeats``: several readings at one
     axis value may. ``statistic``: what the result is called where it is of the same parameter as the readings ("" where
     it is a reading like the others; "{of}" takes a setting). ``brackets``: the law interpolates, so the reading beyond
-    each end of the range enters, too, and the ends need only be bracketed. ``keeps_parameter``: without ``--gives`` the
-    result is of the parameter of the readings.
+    each end of the range enters, too, and the ends need only be bracketed. ``in_parts``: results over parts of a range
+    speak for the whole together. ``keeps_parameter``: without ``--gives`` the result is of the readings' parameter.
     """
 
     name: str
@@ -105,6 +105,7 @@ class Law:
     takes_repeats: bool = False
     brackets: bool = False
     keeps_parameter: bool = False
+    in_parts: bool = False
     statistic: str = ""
     version: int = 1
 

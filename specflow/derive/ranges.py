@@ -203,6 +203,7 @@ RANGE_LAWS: tuple[Law, ...] = (
         worst,
         settings=(_SIDE,),
         keeps_parameter=True,
+        in_parts=True,
         statistic="worst",
         takes_bounds=True,
         takes_repeats=True,

@@ -260,7 +260,7 @@ def _derived(
     if len(units) > 1:
         raise DocumentError(f"the groups give different units: {', '.join(sorted(units))}")
     governing = np.concatenate([taken[outcome.rows] for taken, outcome in found.outcomes])
-    covers = _covers(over, found, outcomes)
+    covers = _covers(request.law, over, found, outcomes)
     rules = {outcome.u_rule for outcome in outcomes if outcome.u is not None}
     return Derived(
         _columns(request, rows, apart, found, governing),
@@ -274,7 +274,9 @@ def _derived(
     )
 
 
-def _covers(over: SaidRange | None, found: _Gathered, outcomes: Sequence[Outcome]) -> tuple[Covered, ...]:
+def _covers(
+    law: Law, over: SaidRange | None, found: _Gathered, outcomes: Sequence[Outcome]
+) -> tuple[Covered, ...]:
     if over is None or any(over.dimension in outcome.axes for outcome in outcomes):
         return ()
     span: Range = over.range
@@ -285,6 +287,7 @@ def _covers(over: SaidRange | None, found: _Gathered, outcomes: Sequence[Outcome
             high=span.high,
             largest_gap=found.largest_gap,
             unit=over.unit,
+            in_parts=law.in_parts,
         ),
     )
 

@@ -46,7 +46,8 @@ class TextColumn:
 class Spans:
     """What each row speaks for along one dimension: ``low`` to ``high`` with no gap above ``gap``; NaN for nothing.
 
-    ``silent`` rows prove no part of a range, not even their own value (a peak of a list); None where there are none.
+    ``silent`` rows prove no part of a range, not even their own value (a peak of a list); None: there are none.
+    ``undivided`` rows speak for a range only where they cover all of it: a ripple over each half is none of the whole.
     """
 
     low: NDArray[np.float64]
@@ -54,11 +55,13 @@ class Spans:
     gap: NDArray[np.float64]
     unit: str = ""
     silent: NDArray[np.bool_] | None = None
+    undivided: NDArray[np.bool_] | None = None
 
     def take(self, rows: NDArray[np.intp]) -> Spans:
         """Return the rows asked for, in that order."""
         silent = None if self.silent is None else self.silent[rows]
-        return Spans(self.low[rows], self.high[rows], self.gap[rows], self.unit, silent)
+        undivided = None if self.undivided is None else self.undivided[rows]
+        return Spans(self.low[rows], self.high[rows], self.gap[rows], self.unit, silent, undivided)
 
 
 @dataclass(frozen=True, slots=True)

@@ -27,7 +27,8 @@ class InputColumn(Document):
 class Covered(Document):
     """The range of a condition that derived values speak for: the raw data reached both ends.
 
-    ``largest_gap`` is the largest between neighbouring raw values, in any group of rows. All in ``unit``.
+    ``largest_gap`` is the largest between neighbouring raw values, in any group of rows. All in ``unit``. ``in_parts``:
+    values over parts of a range speak for the whole together (the worst does; ripples over halves are none of it).
     """
 
     dimension: str
@@ -35,6 +36,7 @@ class Covered(Document):
     high: float
     largest_gap: float
     unit: str = ""
+    in_parts: bool = False
 
 
 class SettingSaid(Document):

@@ -47,12 +47,16 @@ def _stacked_spans(parts: Sequence[Columns]) -> dict[str, Spans]:
 def _spans_in(parts: Sequence[Columns], name: str, unit: str) -> Spans:
     found = [spans_in(part.spans.get(name), unit, part.size) for part in parts]
     low, high, gap = (np.concatenate([getattr(one, end) for one in found]) for end in ("low", "high", "gap"))
-    silent = None
-    if any(one.silent is not None for one in found):
-        silent = np.concatenate(
-            [np.zeros(len(one.low), bool) if one.silent is None else one.silent for one in found]
-        )
-    return Spans(low, high, gap, unit, silent)
+    sizes = [len(one.low) for one in found]
+    silent = _flags([one.silent for one in found], sizes)
+    return Spans(low, high, gap, unit, silent, _flags([one.undivided for one in found], sizes))
+
+
+def _flags(parts: Sequence[NDArray[np.bool_] | None], sizes: Sequence[int]) -> NDArray[np.bool_] | None:
+    if all(part is None for part in parts):
+        return None
+    filled = (np.zeros(size, bool) if part is None else part for part, size in zip(parts, sizes, strict=True))
+    return np.concatenate(list(filled))
 
 
 def speaking(covers: Sequence[Covered], columns: EvidenceColumns) -> EvidenceColumns:
@@ -60,7 +64,11 @@ def speaking(covers: Sequence[Covered], columns: EvidenceColumns) -> EvidenceCol
     size = columns.conditions.size
     spans = {
         one.dimension: Spans(
-            np.full(size, one.low), np.full(size, one.high), np.full(size, one.largest_gap), one.unit
+            np.full(size, one.low),
+            np.full(size, one.high),
+            np.full(size, one.largest_gap),
+            one.unit,
+            undivided=None if one.in_parts else np.ones(size, bool),
         )
         for one in covers
     }
