@@ -13,7 +13,7 @@ from specflow.derive.law import Law, Outcome, Setting
 from specflow.derive.samples import Samples
 from specflow.derive.scattering import ENTRY, angle_deg
 from specflow.errors import CalculationError
-from specflow.units import convert, format_value, parse_unit
+from specflow.units import convert, parse_unit
 
 Floats = NDArray[np.float64]
 
@@ -91,7 +91,7 @@ def group_delay(samples: Samples) -> Outcome:
 
 
 def _megahertz(hertz: float) -> str:
-    return f"{format_value(float(hertz) / 1e6, decimals=6)} MHz"
+    return f"{float(hertz) / 1e6:.6g} MHz"
 
 
 def phase_linearity(samples: Samples) -> Outcome:
@@ -107,7 +107,7 @@ def phase_linearity(samples: Samples) -> Outcome:
     centred = frequency - frequency.mean()
     slope = float(centred @ (turned - turned.mean()) / (centred @ centred))
     value: Floats = turned - turned.mean() - slope * centred
-    delay = format_value(-slope / 360.0 * 1e9, decimals=6)
+    delay = f"{-slope / 360.0 * 1e9:.6g}"
     rows = np.arange(len(value), dtype=np.intp)
     note = f"the line has the delay {delay} ns"
     return Outcome(value, "deg", rows, axes={samples.axis: samples.along}, notes=(note,))

@@ -18,6 +18,7 @@ from specflow.model.snapshot import Snapshot
 from specflow.parameters import Dictionary
 from specflow.workflows.derive import DerivePreview, law_named, made_documents, preview_of, repeated
 from specflow.workflows.derive_request import DeriveOptions, request_of
+from specflow.workflows.derived_uncertainty import with_register
 
 
 @dataclass(frozen=True)
@@ -72,7 +73,7 @@ def _planned(
         roles = tuple(Role(role, document, table.columns, column) for role, column in plan.values)
         over = (plan.over,) if plan.over else ()
         request = Request(law, roles, complete_settings(law, plan.settings), parameter, over)
-        derived = derive_table(request)
+        derived = with_register(snapshot, request, derive_table(request), plan.quantity)
     except SpecflowError as error:
         return PlannedTable(plan, failure=f"{error.message} ({error.hint})" if error.hint else error.message)
     return _compared(snapshot, PlannedTable(plan, request, derived), document if stored else None)

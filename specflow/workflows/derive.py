@@ -17,6 +17,7 @@ from specflow.parameters import Dictionary
 from specflow.store import ProjectStore
 from specflow.workflows.derive_documents import derivation_document, table_document
 from specflow.workflows.derive_request import DeriveOptions, law_named, request_of
+from specflow.workflows.derived_uncertainty import with_register
 from specflow.workflows.evaluate_project import project_dictionary
 from specflow.workflows.numbering import next_number
 
@@ -69,7 +70,7 @@ def preview_of(
     snapshot: Snapshot, request: Request, quantity: QuantityIdentity, derived: Derived | None = None
 ) -> DerivePreview:
     """Return the preview of a request; ``derived`` where its law was applied already."""
-    derived = derived or derive_table(request)
+    derived = derived or with_register(snapshot, request, derive_table(request), quantity)
     derivation = derivation_document(request, quantity, derived)
     table = table_document(snapshot, request, quantity, derived, derivation)
     known = {one.digest: one.id for one in snapshot.tables if one.digest and one.derivation}

@@ -92,13 +92,14 @@ def _conditions(base: EvidenceTable, derived: Derived) -> tuple[ConditionColumn,
 
 def _value_column(column: ValueColumn, derived: Derived, quantity: QuantityIdentity, how: str) -> ValueColumn:
     """Return the value column of the result: at the place of the column that was read, with what was done to it."""
+    spread = "; ".join(filter(None, [derived.u_rule, column.uncertainty_from])) if derived.u_rule else ""
     return column.model_copy(
         update={
             "name": derived.name,
             "quantity": quantity,
             "unit": derived.unit or "1",
             "unit_from": f"the law, from {column.unit}",
-            "uncertainty_from": f"{derived.u_rule}; {column.uncertainty_from}" if derived.u_rule else "",
+            "uncertainty_from": spread,
             "coverage_factor": column.coverage_factor if derived.u_rule else None,
             "conversions": (*column.conversions, how),
         }

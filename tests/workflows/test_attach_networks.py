@@ -16,6 +16,7 @@ import pytest
 
 from specflow.errors import DocumentError
 from specflow.model.conditions import Span
+from specflow.model.declared import UncertaintyEntry
 from specflow.model.derivation import Derivation
 from specflow.model.evidence import EvidenceTable, Supersession
 from specflow.store import ProjectStore, create_project
@@ -189,3 +190,22 @@ def test_a_network_is_verified_against_its_file(store: ProjectStore, tmp_path: P
     [changed] = verify_files(store).checks
     assert [one.cell for one in changed.tables[0].differences] == ["F3"]
     assert "three.s3p" in [file.name for file in find_files([tmp_path]).files]
+
+
+def test_the_register_gives_derived_quantities_their_uncertainty(store: ProjectStore) -> None:
+    line = UncertaintyEntry(
+        id="U-1", set_up="VNA-2", parameter="insertion_loss", standard_uncertainty=0.04, unit="dB",
+        frequency_from_hz=1e9, frequency_to_hz=2e10,
+    )  # fmt: skip
+    store.apply(adding(line), by="A. B.")
+    attached(store, DATA / "lowpass_25c.s2p", set_up="VNA-2", **FILTER)
+    snapshot = store.load()
+    table = snapshot.find(EvidenceTable, "EV-2")
+    arrays = snapshot.load_columns(["EV-2"])["EV-2"]
+    assert table is not None and table.values[0].uncertainty_from == "register U-1"
+    u, hertz = arrays.values["insertion_loss"].u, arrays.conditions.numeric["frequency"] * 1e6
+    assert u is not None
+    inside = (hertz >= 1e9) & (hertz <= 2e10)
+    assert (u[inside] == 0.04).all() and np.isnan(u[~inside]).all()
+    with pytest.raises(DocumentError, match="does not say of which entries"):
+        attached(store, DATA / "lowpass_125c.s2p", uncertainty="0.1 dB (k=2)", **FILTER)

@@ -136,7 +136,22 @@ class _Reading:
         work = TableWork(table, self.context, self.mapping, self.stated, Rejects(""))
         work.questions += [*self.stated.questions, *self.stated.doubts.values(), *self.facts.questions]
         work.questions += self.settled.questions
+        self._ask_about_uncertainty(work)
         return work
+
+    def _ask_about_uncertainty(self, work: TableWork) -> None:
+        """A statement for all entries would be wrong for most: a reflection is less sure than a transmission."""
+        said = [*self.stated.uncertainties]
+        if "uncertainty" in self.stated.said:
+            said.append(self.stated.said["uncertainty"])
+        for one in said:
+            remedy = "give it in the uncertainty register by set-up and quantity, state set_up, and leave it out here"
+            work.ask(
+                one.key,
+                "",
+                f"the uncertainty {one.text!r} ({one.by}) does not say of which entries it is",
+                remedy,
+            )
 
     def _table(self, work: TableWork, columns: NetworkTable, axis: Axis) -> MeasuredTable:
         work.rows = columns.lines
@@ -169,6 +184,8 @@ class _Reading:
             stage = Stage(self.stated.text("stage").casefold() or "qualification")
             identity = Identity(block, method, stage, f"{self.key}{columns.part}", columns.title, "")
             document = make_document(work, identity, columns.documents, documents, arrays)
+        if work.questions:
+            document = None
         if document is not None:
             how = HowRead(importer=self.importer, layout=self.key, place=columns.place,
                           stated=tuple(sorted(self.person.items())))  # fmt: skip
