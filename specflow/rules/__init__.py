@@ -89,6 +89,7 @@ RULES: tuple[Rule, ...] = (
     Rule.of(sources.stated_verdict_differs, "requirement", _WARNING),
     Rule.of(sources.stated_limit_differs, "requirement", _WARNING),
     Rule.of(sources.values_without_meaning, "requirement", _WARNING),
+    Rule.of(sources.outdated_correction, "evidence_table", _WARNING),
     Rule.of(evidence.unmatched_evidence, "evidence_table", _WARNING),
     Rule.of(evidence.ambiguous_evidence, "requirement", _WARNING),
     Rule.of(evidence.left_out_cells, "evidence_table", _WARNING),

@@ -8,6 +8,7 @@ from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
 
 from specflow.errors import UnitError
+from specflow.model.correction import Correction
 from specflow.model.evidence import EvidenceTable
 from specflow.model.requirement import Requirement
 from specflow.model.source_statement import StatedColumn
@@ -102,6 +103,23 @@ def values_without_meaning(facts: Facts) -> Iterator[Found]:
             if mismatch.kind == "value" and table is not None:
                 message = f"{mismatch.column} of {table.id}: {mismatch.what}"
                 yield Found(requirement.id, message, origin=facts.place(table), related=(table.id,))
+
+
+def outdated_correction(facts: Facts) -> Iterator[Found]:
+    """A correction was changed after it was added to readings.
+
+    Why: the readings hold what the correction was then, not what it is now.
+    Fails: a cable was measured again, and its table has another loss than when the file was attached.
+    Passes: every correction is in the revision that was added.
+    Do: attach the file again with the correction as it is now, superseding the table; or record why it does not matter.
+    """
+    for table in facts.snapshot.tables:
+        for name, applied in {one.correction: one for one in table.applied}.items():
+            known = facts.snapshot.find(Correction, name)
+            if known is None or known.revision != applied.revision:
+                now = "is no longer there" if known is None else f"is at revision {known.revision} now"
+                message = f"{name} was added at revision {applied.revision}, and {now}"
+                yield Found(table.id, message, origin=facts.place(table), related=(table.file, name))
 
 
 def _compared(facts: Facts, kind: str) -> Iterator[tuple[Requirement, Told]]:

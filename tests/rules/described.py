@@ -16,6 +16,7 @@ from specflow.model.block import Block, Item
 from specflow.model.budget import Allocation, Budget
 from specflow.model.columns import Columns, TextColumn
 from specflow.model.conditions import ConditionsSet
+from specflow.model.correction import Correction
 from specflow.model.decision import Approval, DeclaredSplit, Disposition, Nonconformance, Waiver
 from specflow.model.declared import DeclaredValue
 from specflow.model.derivation import Derivation
@@ -51,6 +52,10 @@ _PLAIN: Mapping[str, tuple[type[Document], Callable[[Fields], Fields]]] = {
     "items": (Item, lambda row: {"serial": row["id"], "hardware_type": "qualification"}),
     "allocations": (Allocation, lambda row: {"id": f"{row['parent']}/{row['child']}"}),
     "budgets": (Budget, lambda row: {"law": "cascade"}),
+    "corrections": (
+        Correction,
+        lambda row: {"points": [{"frequency_hz": 1e9, "added": 3.0}, {"frequency_hz": 40e9, "added": 3.0}]},
+    ),
     "changes": (ItemChange, lambda row: {"description": "changed"}),
     "supersessions": (Supersession, lambda row: {"id": f"{row['earlier']}/{row['later']}"}),
     "derivations": (

@@ -43,7 +43,8 @@ ROLES = tuple(role.value for role in Role if role not in (Role.UNRESOLVED, Role.
 
 
 _STATED = ("block", "method", "stage", "requirement", "set_up", "performer", "procedure", "procedure_revision", "item",
-           "model", "model_version", "validated", "temperature", "bandwidth", "spectrum", "uncertainty")  # fmt: skip
+           "model", "model_version", "validated", "temperature", "bandwidth", "spectrum", "uncertainty", "corrections",
+           "scanned", "floor", "list")  # fmt: skip
 
 
 def read_mappings(text: str, name: str) -> tuple[LayoutMapping, ...]:
@@ -74,7 +75,7 @@ def _layout(data: dict[str, Any], where: str) -> LayoutMapping:
     derive = [_derive(entry, where) for entry in _entries_of(data, "derive", where)]
     long, matrix = _part_of(data, "long", where), _part_of(data, "matrix", where)
     stated = {key: str(value) for key, value in _part_of(data, "stated", where).items()}
-    stated |= {key: str(data.pop(key)) for key in _STATED if key in data}
+    stated |= {key: _said(data.pop(key)) for key in _STATED if key in data}
     _check(LayoutMapping, data, where, but=("columns", "stated", "pivots", "long", "matrix", "derive"))
     _check_area(data, where)
     if data.get("others", Role.NOT_READ) != Role.NOT_READ:
@@ -141,6 +142,11 @@ def _demand(data: Mapping[str, Any], names: tuple[str, ...], where: str) -> None
     for name in names:
         if data.get(name, "") == "":
             raise FileError(f"{name} is missing", where=where, hint=f"write {name} = ...")
+
+
+def _said(value: Any) -> str:
+    """What is said for a table as a text; a list of names has commas between them."""
+    return ", ".join(map(str, value)) if isinstance(value, list) else str(value)
 
 
 def _entries_of(data: dict[str, Any], key: str, where: str) -> list[dict[str, Any]]:
