@@ -1,0 +1,380 @@
+"""Network files as evidence: what becomes a column, what is asked, what comments state, what is to be derived."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+import pytest
+
+from specflow.importers.measured.network_facts import comment_facts
+from specflow.importers.measurements import MeasuredTable, Measurements, read_measurements
+from specflow.importers.readers.touchstone_network import Comment
+from specflow.model.base import Document
+from specflow.model.conditions import Span
+from specflow.model.evidence import TableMapping
+from specflow.model.requirement import Requirement
+from specflow.parameters import load_dictionary
+from tests.builders import (
+    a_block,
+    a_conditions_set,
+    a_dimension,
+    a_quantity,
+    a_requirement,
+    a_snapshot,
+    an_item,
+    at_most,
+)
+
+DATA = Path(__file__).parents[2] / "data"
+SAID = {"block": "LNA", "item": "LNA-1"}
+PORTS = {"port 1": "input", "port 2": "output"}
+BAND = a_conditions_set("CS", a_dimension(span=Span(low=1.0, high=3.0, step=0.5), tolerance=0.0))
+ROWS = "1 0.1 0 2 0 0.01 0 0.2 0\n2 0.1 0 2 10 0.01 0 0.2 0\n3 0.1 0 2 20 0.01 0 0.2 0\n"
+
+
+def wanted(parameter: str, plane: str = "", id: str = "R-1", **fields: Any) -> Requirement:
+    return a_requirement(id, quantity=a_quantity(parameter, plane=plane, **fields), limit=at_most(1))
+
+
+def read(path: Path, *documents: Document, mapping: str = "", **stated: str) -> Measurements:
+    snapshot = a_snapshot(a_block(), an_item(), BAND, *documents)
+    return read_measurements(path, snapshot, load_dictionary(), stated=SAID | stated, mapping=mapping)
+
+
+def raw(path: Path, *documents: Document, **stated: str) -> MeasuredTable:
+    return read(path, *documents, **stated).tables[0]
+
+
+@pytest.fixture
+def amplifier(tmp_path: Path) -> Path:
+    path = tmp_path / "amp.s2p"
+    path.write_text(f"# GHz S MA R 50\n{ROWS}")
+    return path
+
+
+def planned(table: MeasuredTable) -> list[tuple[str, str, str]]:
+    return [(one.quantity.parameter, one.law, one.shown) for one in table.plans]
+
+
+# --- the raw table
+
+
+def test_every_entry_comes_in_as_recorded(amplifier: Path) -> None:
+    table = raw(amplifier)
+    assert table.document is not None and table.columns is not None
+    names = [one.name for one in table.document.values]
+    assert names == [f"S{i}{j} {part}" for i in (1, 2) for j in (1, 2) for part in ("magnitude", "angle")]
+    by_name = {one.name: one for one in table.document.values}
+    s21 = by_name["S21 magnitude"]
+    assert (s21.quantity.parameter, s21.quantity.plane, s21.unit) == (
+        "scattering_magnitude",
+        "port 1 to port 2",
+        "1",
+    )
+    assert (by_name["S22 angle"].quantity.plane, by_name["S22 angle"].unit) == ("port 2", "deg")
+    assert table.columns.values["S21 angle"].low.tolist() == [0, 10, 20]
+    assert table.columns.conditions.numeric["frequency"].tolist() == [1, 2, 3]
+    assert table.columns.conditions.units["frequency"] == "GHz"
+    assert table.columns.source_rows.tolist() == [2, 3, 4] and (s21.column, s21.lines_below) == (4, 0)
+    assert table.columns.items.word(0) == "LNA-1"
+
+
+def test_no_raw_column_is_of_a_quantity_that_a_requirement_names(amplifier: Path) -> None:
+    """Not even where a limit is on gain and nothing said which port is the input: then it is asked, not matched."""
+    table = raw(amplifier, wanted("gain"), derive="none")
+    assert table.document is not None
+    assert all(one.quantity.parameter.startswith("scattering_") for one in table.document.values)
+
+
+@pytest.mark.parametrize(
+    ("name", "stated", "values"),
+    [
+        ("transistor_noise.s2p", {}, 37 * 8),
+        ("four_port_75ohm.s4p", {}, 205 * 32),
+        ("splitter_25c.S3P", {"temperature": "case"}, 169 * 18),
+        ("ten_port_sim.s10p", {}, 11 * 200),
+        ("lowpass_25c.s2p", {"temperature": "case"}, 2006 * 8),
+        ("lowpass_125c.s2p", {"temperature": "case"}, 2006 * 8),
+        ("mmwave_tx_140_220ghz.S2P", {}, 801 * 8),
+    ],
+)
+def test_published_files_come_in_with_at_most_a_location_of_their_temperature(
+    name: str, stated: dict[str, str], values: int
+) -> None:
+    table = raw(DATA / name, **stated)
+    assert table.document is not None and table.values == values and not table.rejected
+
+
+def test_rows_over_several_lines_keep_the_line_of_each_entry() -> None:
+    table = raw(DATA / "ten_port_sim.s10p")
+    assert table.document is not None and table.columns is not None
+    [column] = [one for one in table.document.values if one.name == "S10_10 magnitude"]
+    line = int(table.columns.source_rows[0]) + column.lines_below
+    words = (DATA / "ten_port_sim.s10p").read_text().splitlines()[line - 1].split()
+    assert float(words[column.column - 1]) == table.columns.values["S10_10 magnitude"].low[0]
+
+
+def test_a_noise_block_is_a_table_of_its_own() -> None:
+    first, noise = read(DATA / "transistor_noise.s2p").tables
+    assert noise.document is not None and noise.columns is not None and first.document is not None
+    parameters = [one.quantity.parameter for one in noise.document.values]
+    assert parameters == ["noise_figure_minimum", "optimum_source_magnitude", "optimum_source_angle",
+                          "noise_resistance_normalised"]  # fmt: skip
+    place = int(np.flatnonzero(noise.columns.conditions.numeric["frequency"] == 1000)[0])
+    assert [noise.columns.values[name].low[place] for name in ("Fmin", "Gopt magnitude", "Gopt angle", "Rn")] == [
+        0.9502, 0.09867, 162.93, 0.0914,
+    ]  # fmt: skip
+    assert first.document.table_key != noise.document.table_key
+
+
+def test_a_number_that_is_none_is_rejected_with_its_place(tmp_path: Path) -> None:
+    path = tmp_path / "a.s1p"
+    path.write_text("# GHz S DB R 50\n1 -3 0\n2 nan 5\n")
+    table = raw(path)
+    assert [(one.cell, one.text) for one in table.rejected] == [("B3", "nan")] and table.values == 2
+
+
+def test_converted_parameters_say_so(tmp_path: Path) -> None:
+    path = tmp_path / "a.s1p"
+    path.write_text("# GHz Z RI R 75\n1 0.99 0\n")
+    table = raw(path)
+    assert table.document is not None and table.columns is not None
+    column = table.document.values[0]
+    assert (column.name, column.conversions) == (
+        "S11 real",
+        ("S from Z at 75 ohm (normalised to it in version 1)",),
+    )
+    assert table.columns.values["S11 real"].low[0] == pytest.approx((74.25 - 75) / (74.25 + 75))
+
+
+# --- doubts
+
+
+def test_another_column_order_is_asked_and_taken_as_told(tmp_path: Path) -> None:
+    path = tmp_path / "a.s2p"
+    path.write_text(f"! Freq S11 S12 S21 S22\n# GHz S MA R 50\n{ROWS}")
+    [question] = raw(path).questions
+    assert (
+        question.cell == "line 1"
+        and "S11 S12 S21 S22; by the format they are S11 S21 S12 S22" in question.what
+    )
+    by_format, by_comment = raw(path, **{"column order": "format"}), raw(path, **{"column order": "comment"})
+    assert (
+        by_format.columns is not None and by_comment.columns is not None and by_comment.document is not None
+    )
+    assert by_format.columns.values["S21 magnitude"].low[0] == 2.0
+    assert by_comment.columns.values["S21 magnitude"].low[0] == 0.01
+    [moved] = [one for one in by_comment.document.values if one.name == "S21 magnitude"]
+    assert moved.column == 6
+    assert raw(path, **{"column order": "either"}).questions
+
+
+def test_an_x_axis_of_power_is_asked_and_becomes_the_condition(tmp_path: Path) -> None:
+    path = tmp_path / "a.s2p"
+    rows = ROWS.replace("1 0.1", "-30 0.1").replace("2 0.1", "-20 0.1").replace("3 0.1", "-10 0.1")
+    path.write_text(f"! Pin(dBm) S11 S21 S12 S22\n# GHz S MA R 50\n{rows}")
+    assert {one.header for one in raw(path).questions} == {"x axis"}
+    table = raw(path, wanted("gain"), **PORTS, **{"x axis": "input_level in dBm", "frequency": "28 GHz"})
+    assert table.document is not None and table.columns is not None
+    conditions = table.columns.conditions
+    assert conditions.numeric["input_level"].tolist() == [-30, -20, -10]
+    assert (conditions.units["input_level"], conditions.numeric["frequency"].tolist()) == (
+        "dBm",
+        [28, 28, 28],
+    )
+    assert planned(table) == [("gain", "gain", "S21")]
+    assert raw(path, **{"x axis": "frequency"}).questions == ()
+    assert (
+        raw(path, **{"x axis": "mood"}).questions and raw(path, **{"x axis": "input_level in GHz"}).questions
+    )
+
+
+def test_another_format_is_asked_and_taken_as_told(tmp_path: Path) -> None:
+    path = tmp_path / "a.s1p"
+    path.write_text("# GHz S MA R 50\n1 -20 0\n2 -10 0\n")
+    [question] = raw(path).questions
+    assert "below zero" in question.what and question.cell == "line 2"
+    table = raw(path, format="DB")
+    assert table.document is not None and table.document.values[0].unit == "dB"
+    assert raw(path, format="dBm").questions
+
+
+def test_impedances_in_comments_that_are_not_the_reference_are_a_finding() -> None:
+    [finding] = read(DATA / "ten_port_sim.s10p").findings
+    assert (
+        "268.957769 ohm" in finding.message and "50 ohm" in finding.message and finding.severity == "warning"
+    )
+
+
+# --- what comments state
+
+
+@pytest.mark.parametrize(
+    ("text", "expected"),
+    [
+        ("TEST CONDITIONS: INPUT POWER = 0 dBm - +25 deg C", {"input power": "0 dBm", "temperature": "25 °C"}),
+        ("TEST CONDITIONS: INPUT POWER = -10 dBm @ Temperature = + 25 deg C",
+         {"input power": "-10 dBm", "temperature": "25 °C"}),
+        ("0 dBm -40 deg C", {"temperature": "-40 °C"}),
+        ("Temp: 25 C", {"temperature": "25 °C"}),
+        ("T = -40.5°C", {"temperature": "-40.5 °C"}),
+        ("Temperature: +85 degC", {"temperature": "85 °C"}),
+        ("measured in C band, 3 C connectors", {}),
+        ("S/N: Unit# 1", {"S/N": "Unit# 1"}),
+        ("Date: Thu Apr 05 13:49:22 2012", {"date": "2012-04-05"}),
+        ("Date: 03/04/2012", {}),
+        ("VAR V_in= 0.838700", {}),
+        ("VAR Vdd= 3.3 V", {"Vdd": "3.3 V"}),
+        ("Port[1] = 1:1", {}),
+        ("Freq S11:SOLT2(ON) S21:SOLT2(ON)", {}),
+    ],
+)  # fmt: skip
+def test_facts_in_comments(text: str, expected: dict[str, str]) -> None:
+    found = comment_facts([Comment(3, text)])
+    assert {one.key: one.value for one in found.facts} == expected and not found.questions
+
+
+def test_a_dash_that_may_be_a_minus_is_asked() -> None:
+    found = comment_facts([Comment(6, "INPUT POWER = 0 dBm - 25 deg C")])
+    [question] = found.questions
+    assert question.cell == "line 6" and "a minus?" in question.what
+    assert [one.key for one in found.facts] == ["input power"]
+
+
+# --- what is derived
+
+
+@pytest.mark.parametrize(
+    ("parameter", "plane", "expected"),
+    [
+        ("gain", "", ("gain", "S21")),
+        ("gain", "input to output", ("gain", "S21")),
+        ("insertion_loss", "", ("loss", "S21")),
+        ("return_loss", "input", ("loss", "S11")),
+        ("return_loss", "port 2", ("loss", "S22")),
+        ("reflection_magnitude", "output", ("gain", "S22")),
+        ("vswr", "output", ("vswr", "S22")),
+        ("reverse_isolation", "", ("loss", "S12")),
+        ("reverse_transmission", "output to input", ("gain", "S12")),
+        ("isolation", "output to input", ("loss", "S12")),
+        ("phase", "", ("phase", "S21")),
+        ("group_delay", "", ("group delay", "S21")),
+        ("phase_linearity", "", ("phase linearity", "S21")),
+    ],
+)
+def test_requirements_say_what_is_derived(
+    amplifier: Path, parameter: str, plane: str, expected: tuple[str, str]
+) -> None:
+    table = raw(amplifier, wanted(parameter, plane), **PORTS)
+    assert planned(table) == [(parameter, *expected)] and table.plans[0].why == "R-1"
+    assert table.plans[0].quantity == a_quantity(parameter, plane=plane)
+
+
+def test_ports_the_other_way_round_give_the_other_entry(amplifier: Path) -> None:
+    turned = {"port 1": "output", "port 2": "input"}
+    assert planned(raw(amplifier, wanted("gain"), **turned)) == [("gain", "gain", "S12")]
+
+
+def test_a_line_is_fitted_over_the_band_of_the_requirement_only(amplifier: Path) -> None:
+    [plan] = raw(amplifier, wanted("phase_linearity"), **PORTS).plans
+    assert plan.over == "frequency: 1.0..3.0 GHz"
+    without = wanted("phase_linearity").model_copy(update={"conditions": None})
+    table = raw(amplifier, without, **PORTS)
+    assert not table.plans and any("no range of frequency" in note for note in table.notes)
+
+
+def test_paths_of_a_splitter_whose_comments_name_the_outputs() -> None:
+    documents = (wanted("amplitude_imbalance"), wanted("phase_imbalance", id="R-2"), wanted("isolation", id="R-3"),
+                 wanted("isolation", "OUT1 to OUT2", id="R-4"))  # fmt: skip
+    said = {"temperature": "case"}
+    [question, *_] = raw(DATA / "splitter_25c.S3P", *documents, **said).questions
+    assert "no port is named 'input'" in question.what
+    table = raw(DATA / "splitter_25c.S3P", *documents, **said, **{"port 1": "input"})
+    assert planned(table) == [
+        ("amplitude_imbalance", "amplitude imbalance", "S21, S31"),
+        ("phase_imbalance", "phase imbalance", "S21, S31"),
+        ("isolation", "loss", "S32"),
+        ("isolation", "loss", "S32"),
+    ]
+    shown = {one.header: one.reason for one in table.recognised}
+    assert (shown["port 1"], shown["port 2"]) == ("stated by the person", "a comment of the file")
+
+
+def test_a_return_loss_of_no_port_is_told_and_not_guessed(amplifier: Path) -> None:
+    table = raw(amplifier, wanted("return_loss"), **PORTS)
+    assert not table.plans and any("does not say of which port" in note for note in table.notes)
+
+
+def test_a_statistic_over_a_range_is_left_to_the_laws_of_ranges(amplifier: Path) -> None:
+    table = raw(amplifier, wanted("gain", statistic="worst"), **PORTS)
+    assert not table.plans and any("R-1: gain, worst: a law over a range" in note for note in table.notes)
+
+
+def test_what_is_derived_may_be_said(amplifier: Path) -> None:
+    table = raw(amplifier, derive="gain; return loss at input, VSWR of output", **PORTS)
+    assert planned(table) == [
+        ("gain", "gain", "S21"),
+        ("return_loss", "loss", "S11"),
+        ("vswr", "vswr", "S22"),
+    ]
+    [question] = raw(amplifier, derive="happiness", **PORTS).questions
+    assert "'happiness'" in question.what
+
+
+def test_a_noise_figure_needs_the_noise_block(amplifier: Path) -> None:
+    first, noise = read(DATA / "transistor_noise.s2p", wanted("noise_figure")).tables
+    assert not first.plans and planned(noise) == [("noise_figure", "noise figure", "the noise block")]
+    assert dict(noise.plans[0].settings) == {"reference": "50"}
+    assert any("no noise block" in note for note in raw(amplifier, wanted("noise_figure")).notes)
+
+
+def test_active_reflection_needs_spacing_and_scan() -> None:
+    scan = a_dimension("scan_theta", "deg", span=Span(low=-60.0, high=60.0, step=5.0), tolerance=0.0)
+    frequency = a_dimension(span=Span(low=3.6, high=3.8, step=0.02), tolerance=0.0)
+    conditions = a_conditions_set("ARRAY", frequency, scan)
+    requirement = wanted("active_reflection").model_copy(update={"conditions": "ARRAY"})
+    bare = raw(DATA / "ten_port_sim.s10p", conditions, requirement)
+    assert any("spacing of the elements is not said" in note for note in bare.notes)
+    [plan] = raw(DATA / "ten_port_sim.s10p", conditions, requirement, spacing="40 mm").plans
+    assert (plan.law, len(plan.values), plan.over) == ("active reflection", 200, "frequency: 3.6..3.8 GHz")
+    assert dict(plan.settings) == {"spacing": "40 mm", "scan": "-60.0..60.0 deg step 5.0 deg"}
+
+
+# --- mappings
+
+
+def test_a_mapping_names_the_ports_and_is_known_again_by_the_shape(amplifier: Path, tmp_path: Path) -> None:
+    proposal = read(amplifier).proposal
+    assert '"port 1" = "?"' in proposal
+    mapping = proposal.replace('"port 1" = "?"', '"port 1" = "input"').replace(
+        '"port 2" = "?"', '"port 2" = "output"'
+    )
+    given = read(amplifier, wanted("gain"), mapping=mapping).tables[0]
+    assert planned(given) == [("gain", "gain", "S21")] and given.mapping_from == "the mapping file mapping"
+    stored = TableMapping(id="MAP-1", layout_key=given.layout_key, toml=given.mapping)
+    other = tmp_path / "other.s2p"
+    other.write_text("# MHz S MA R 50\n5 0.1 0 3 0 0.01 0 0.2 0\n6 0.1 0 3 0 0.01 0 0.2 0\n")
+    again = raw(other, wanted("gain"), stored)
+    assert planned(again) == [("gain", "gain", "S21")] and again.mapping_from.startswith("MAP-1")
+    commented = tmp_path / "commented.s2p"
+    commented.write_text("! another analyser\n" + other.read_text())
+    assert raw(commented, wanted("gain"), stored).questions
+    person = raw(other, wanted("gain"), stored, **{"port 1": "output", "port 2": "input"})
+    assert planned(person) == [("gain", "gain", "S12")]
+
+
+def test_a_port_that_is_not_there_is_asked(amplifier: Path) -> None:
+    assert any("no port 3" in one.what for one in raw(amplifier, **{"port 3": "output"}).questions)
+
+
+def _words(notes: Sequence[str]) -> str:
+    return " ".join(notes)
+
+
+def test_entries_of_zeros_are_said(tmp_path: Path) -> None:
+    path = tmp_path / "a.s2p"
+    path.write_text("# GHz S RI R 50\n1 0.1 0 2 0 0 0 0 0\n")
+    assert "S12, S22: all numbers are 0" in _words(raw(path).notes)
