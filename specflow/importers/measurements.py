@@ -4,14 +4,14 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import replace
+from itertools import groupby
 from pathlib import Path
 
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.document import PROVISIONAL_FILE
-from specflow.importers.measured.evidence import collected, read_table
+from specflow.importers.measured.evidence import ReadTable, read_table
 from specflow.importers.measured.located import GivenMappings, LocatedTable, Mappings, locate_tables
 from specflow.importers.measured.mapping import read_mappings, write_mapping
-from specflow.importers.measured.meaning import read_meanings
 from specflow.importers.measured.network import read_network_tables
 from specflow.importers.measured.proposal import Proposal, propose
 from specflow.importers.measured.repeats import without_repeats
@@ -80,11 +80,12 @@ def read_measurements(
         if found.outside:
             findings.append(_outside(grid, found.outside))
     findings += [_unused(file.fingerprint.name, layout, mapping_name) for layout in mappings.unused()]
-    tables = without_repeats([_read(one, context, person, include_hidden_rows) for one in located])
+    read = [_read(one, context, person, include_hidden_rows) for one in located]
+    tables = without_repeats([one.table for one in read])
     findings += [finding for table in tables for finding in table.findings]
     if not located:
         findings.append(_nothing(file, skipped))
-    proposal = _proposal(located, context, person)
+    proposal = _proposal(located, read)
     document = _file(file.fingerprint, tables, person)
     return Measurements(document, tuple(tables), tuple(findings), tuple(skipped), proposal)
 
@@ -102,18 +103,19 @@ def _of_network(
 
 def _read(
     located: LocatedTable, context: Context, person: Mapping[str, str], include_hidden_rows: bool
-) -> MeasuredTable:
+) -> ReadTable:
     if include_hidden_rows:
         located = replace(
             located,
             mapping=replace(located.mapping, include_hidden_rows=True),
             read_as=replace(located.read_as, include_hidden_rows=True),
         )
-    table = _with_how_read(read_table(located, context, person), located, person)
+    read = read_table(located, context, person)
+    table = _with_how_read(read.table, located, person)
     table = replace(table, asked=tuple(located.mapping.derive))
-    if not located.mapping_from:
-        return table
-    return replace(table, mapping=write_mapping(replace(located.mapping, layout=located.key)))
+    if located.mapping_from:
+        table = replace(table, mapping=write_mapping(replace(located.mapping, layout=located.key)))
+    return replace(read, table=table)
 
 
 def _with_how_read(table: MeasuredTable, located: LocatedTable, person: Mapping[str, str]) -> MeasuredTable:
@@ -156,12 +158,24 @@ def _file(file: FileFingerprint, tables: Sequence[MeasuredTable], person: Mappin
     )
 
 
-def _proposal(located: Sequence[LocatedTable], context: Context, person: Mapping[str, str]) -> str:
+def _proposal(located: Sequence[LocatedTable], read: Sequence[ReadTable]) -> str:
+    """The proposal for all tables, the parts of one table together."""
     proposals = []
-    for one in located:
-        stated = collected(one, context, person)
-        meanings = read_meanings(one.table, context, one.read_as, stated)
-        proposals.append(Proposal(one.table, one.key, one.mapping, meanings, one.preamble.title))
+    pairs = zip(located, read, strict=True)
+    for _, group in groupby(pairs, key=lambda pair: (pair[0].table.grid.name, pair[0].number)):
+        parts = list(group)
+        first = parts[0][0]
+        proposals.append(
+            Proposal(
+                first.table,
+                first.key,
+                first.mapping,
+                [one.meanings for _, one in parts],
+                [one.read_as for one, _ in parts],
+                first.preamble.facts,
+                first.preamble.title,
+            )
+        )
     return propose(proposals)
 
 

@@ -1,4 +1,4 @@
-"""Headers that state their condition: "Gain @ 28 GHz (dB)" beside "Gain @ 29 GHz (dB)" is one quantity at two of them."""
+"""Headers that state a condition: "Gain @ 28 GHz (dB)" beside "Gain @ 29 GHz (dB)" is one quantity at two of them."""
 
 from __future__ import annotations
 
@@ -7,7 +7,7 @@ from collections import defaultdict
 
 from specflow.conditions import KnownDimension, find_dimension
 from specflow.importers.measured.context import Context
-from specflow.importers.measured.header_text import known_unit, read_header
+from specflow.importers.measured.header_text import header_key, known_unit, read_header
 from specflow.importers.measured.mapping_parts import UNLOCATED, PivotMapping
 from specflow.importers.measured.quantity_text import name_quantity
 from specflow.importers.measured.tables import FoundTable
@@ -70,6 +70,8 @@ def _pivot(
         return None
     if len({table.headers[place].unit for place in places}) > 1:
         return None
+    if len({header_key(table.headers[place].text) for place in places}) < len(places):
+        return None  # the same condition twice: nobody can tell the columns apart
     if name == "frequency" and parameter.key in _OF_OFFSETS:
         return None
     return PivotMapping(

@@ -9,12 +9,13 @@ import numpy as np
 
 from specflow.conditions import find_dimension, is_unlocated_temperature
 from specflow.importers.measured.context import Context
+from specflow.importers.measured.header_cells import read_headers
 from specflow.importers.measured.header_text import header_key, read_header
 from specflow.importers.measured.long_form import find_long
 from specflow.importers.measured.mapping_parts import LayoutMapping
 from specflow.importers.measured.result import Question
 from specflow.importers.measured.roles import role_of_words
-from specflow.importers.measured.tables import FoundTable, find_tables
+from specflow.importers.measured.tables import FoundTable, find_header, find_tables
 from specflow.importers.readers import CellRange, Grid, is_blank
 
 _MOST_COLUMNS = 2000
@@ -163,10 +164,10 @@ def _question(one: FoundTable, other: FoundTable) -> Question:
 
 def _at_repeats(grid: Grid, context: Context) -> Strips | None:
     """Cut where the header of a condition begins again: Frequency, S21, Frequency, S11."""
-    tables = find_tables(grid, context.recognises)
-    if len(tables) != 1:
+    row = find_header(grid, grid.first_row, context.recognises)
+    headers = read_headers(grid, row.row, 1) if row is not None else ()
+    if not headers:
         return None
-    headers = tables[0].headers
     first = header_key(headers[0].text)
     starts = [place for place, header in enumerate(headers) if header_key(header.text) == first]
     parts = read_header(headers[0].text)

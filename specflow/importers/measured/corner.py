@@ -1,7 +1,7 @@
 """Headers that are numbers: one quantity in several columns, each at another value of a condition.
 
-The condition is named where the numbers carry a unit, in the corner ("Frequency (GHz) \\\\ Baseplate temperature (°C)"),
-or in a row above; the quantity in a row above or beside the corner. What is named nowhere is asked about.
+The condition is named where the numbers carry a unit, in the corner ("Frequency (GHz) \\\\ Baseplate (°C)"), or in a row
+above; the quantity in a row above or beside the corner. What is named nowhere is asked about.
 """
 
 from __future__ import annotations
@@ -62,7 +62,12 @@ def table_under(grid: Grid, top: int, found: NumberRow, context: Context) -> Fou
     doubts: list[Question] = []
     pivots = []
     for columns, quantity, unit, words in groups:
-        if dimension is None or quantity is None or quantity.parameter is None:
+        if (
+            dimension is None
+            or quantity is None
+            or quantity.parameter is None
+            or _repeat(grid, found, columns)
+        ):
             doubts.append(_question(grid, found, columns, dimension, words))
             continue
         pivots.append(_pivot(grid, columns, dimension, quantity, unit, _carried_unit(grid, found)))
@@ -70,12 +75,17 @@ def table_under(grid: Grid, top: int, found: NumberRow, context: Context) -> Fou
     return replace(table, pivots=tuple(pivots), doubts=tuple(doubts), title_rows=rows)
 
 
+def _repeat(grid: Grid, found: NumberRow, columns: Sequence[int]) -> bool:
+    """Whether a number stands over two of the columns: nobody can tell these apart."""
+    return len({_words(grid.value(found.row, column)) for column in columns}) < len(columns)
+
+
 def _number_row(grid: Grid, top: int, row: int, context: Context) -> NumberRow | None:
     if row in grid.comment_rows:
         return None
     filled = [(column, value) for column, value in enumerate(grid.row(row), start=1) if not is_blank(value)]
     numbers = [(column, value) for column, value in filled if is_reading(value)]
-    if len(numbers) < 2 or len(filled) - len(numbers) > 1 or len({str(value) for _, value in numbers}) < 2:
+    if len(numbers) < 2 or len(filled) - len(numbers) > 1:
         return None
     columns = tuple(column for column, _ in numbers)
     if len(filled) > len(numbers):

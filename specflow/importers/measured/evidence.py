@@ -108,7 +108,7 @@ def read_table(located: LocatedTable, context: Context, person: Mapping[str, str
 
 
 def _asked_of_columns(work: TableWork) -> list[Question]:
-    """The questions about columns; where it is asked how the table lies, numbers as headers are not asked about again."""
+    """The questions about columns; where it is asked how the table lies, numbers as headers are not asked about."""
     asked = [meaning for meaning in work.meanings if meaning.question]
     if work.table.doubts:
         asked = [meaning for meaning in asked if not is_reading(meaning.header.text)]

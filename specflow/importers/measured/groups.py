@@ -87,7 +87,7 @@ def _repeat(groups: Sequence[Group]) -> bool:
 
 
 def fact_of(text: str, cell: str, row: int, context: Context) -> Fact | None:
-    """What a cell over columns says beyond doubt: an item, an amount of frequency or temperature, a key with its value."""
+    """What a cell over columns says beyond doubt: an item, a frequency, a temperature, a key with its value."""
     pair = pair_in(text)
     if pair is not None and canonical(pair[0]):
         return Fact(pair[0], pair[1], cell, row)

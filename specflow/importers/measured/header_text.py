@@ -95,6 +95,7 @@ def without_coverage(text: str) -> tuple[str, float | None]:
     return _COVERAGE.sub(" ", text).strip(), k
 
 
+@lru_cache(maxsize=4096)
 def known_unit(text: str) -> Unit | None:
     """Return the unit that a text spells, None when it spells none."""
     try:

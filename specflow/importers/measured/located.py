@@ -28,7 +28,7 @@ __all__ = ["GivenMappings", "LocatedTable", "LocatedTables", "Mappings", "locate
 class LocatedTable:
     """A table to be read; ``mapping_from`` says where its mapping is from ("" when there is none).
 
-    ``mapping`` is as the person wrote it, ``read_as`` what is read of this part of the table. ``sheet_facts`` are said
+    ``number`` counts the tables of the sheet: the parts of one share it. ``mapping`` is as the person wrote it, ``read_as`` what is read of this part of the table. ``sheet_facts`` are said
     above an earlier table of the sheet and hold where ``preamble`` says nothing else. ``kept_under`` is the key under
     which the mapping is kept.
     """
@@ -41,6 +41,7 @@ class LocatedTable:
     sheet_facts: tuple[Fact, ...]
     read_as: LayoutMapping
     kept_under: str
+    number: int
 
 
 @dataclass
@@ -72,6 +73,7 @@ class _Locator:
         self._grid = grid
         self._context = context
         self._mappings = mappings
+        self._number = 0
 
     def take_areas(self) -> tuple[list[CellRange], Settled | None]:
         """Take the tables whose areas are stated; return the areas, and the mapping that says there is no more."""
@@ -140,6 +142,7 @@ class _Locator:
             rows = mapping.header_rows
             table = cut_table(table.grid, table.top, table.header_row, rows, self._context.recognises)
         facts = (*facts_of_cells(self._grid, table, mapping), *facts)
+        self._number += 1
         for part, read_as in parts_of(table, mapping, self._context):
             self.found.tables.append(
                 LocatedTable(
@@ -151,6 +154,7 @@ class _Locator:
                     tuple(sheet_facts),
                     read_as,
                     kept_under(key, mapping),
+                    self._number,
                 )
             )
 

@@ -70,7 +70,7 @@ def long_parts(
             continue
         if any(fact.row in rows for fact in common):
             continue
-        part = _part(table, name, unit, rows, (names, values, units))
+        part = _part(table, long, name, unit, rows, (names, values, units))
         parts.append(
             (replace(part, facts=(*part.facts, *common)), _settled(read_as, long, part, values, unit))
         )
@@ -159,6 +159,7 @@ def _conditions_among(
 
 def _part(
     table: FoundTable,
+    long: LongMapping,
     name: str,
     unit: str,
     rows: list[int],
@@ -176,6 +177,7 @@ def _part(
         headers=tuple(sorted((*headers, own), key=lambda header: header.column)),
         rows=np.array(rows, np.int32),
         unnamed=tuple(column for column in table.unnamed if column not in aside),
+        long=long,
         part=f"{name} ({unit})" if unit else name,
     )
 

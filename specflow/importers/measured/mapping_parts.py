@@ -13,7 +13,6 @@ from dataclasses import dataclass, field
 from specflow.importers.measured.header_text import header_key
 from specflow.importers.readers import column_number
 
-
 #: The temperature of headers that do not say whose it is: the person states the location.
 UNLOCATED = "temperature"
 

@@ -2,14 +2,18 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections import defaultdict
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 
 from specflow.importers.measured.column import ColumnMeaning
+from specflow.importers.measured.facts import Fact
+from specflow.importers.measured.header_text import header_key
 from specflow.importers.measured.layout import sheet_pattern
 from specflow.importers.measured.mapping import FORMAT, ColumnMapping, LayoutMapping, write_mapping
 from specflow.importers.measured.result import Role
 from specflow.importers.measured.tables import FoundTable
+from specflow.importers.readers import looks_numeric
 from specflow.model.evidence import SpectrumKind
 
 HEAD = f"""# A mapping of measurement tables: how the columns of each layout are to be read.
@@ -19,43 +23,103 @@ HEAD = f"""# A mapping of measurement tables: how the columns of each layout are
 #              spectrum = "noise-like" or "discrete"; scale = 20 where a reading times 20 is in the unit
 # condition:   dimension, unit; fill_down = true where a blank cell means the one above
 # uncertainty: unit, k = 2 (1: a standard uncertainty), of = "header of the values"
-# table:       block, method, stage; [table.stated] for conditions that hold for all rows; header_rows = 2;
-#              include_hidden_rows, keep_summary_rows, keep_placeholders, skip = true
+# table:       block, method, stage; [table.stated] for conditions that hold for all rows, frequency = "28 GHz", or taken
+#              from the sheet: "cell B3", "cell B3 in GHz", "above"; header_rows = 2; others = "not read";
+#              include_hidden_rows, keep_summary_rows, keep_placeholders, skip = true; skip_rows = [12, 13]
+#              when = {{ Format = "Phase" }} where it holds only for tables that state this
+# place:       sheet, area = "K6:L10" (or "A137:B" to the end), header_rows = 0 where columns go by their letters,
+#              turned = true where the headers are in the first column, stop_at = "TOTALS", alone = true where nothing
+#              else of the sheet is read
+# long:        [table.long] parameter = "Parameter", value = "Value", unit = "Unit": the quantity is in the rows;
+#              parameters = {{ "Gain at boresight" = "antenna_gain" }}, only = ["..."]
+# matrix:      [table.matrix] parameter, unit, rows = {{ dimension = "theta", start = 0, step = 1, unit = "deg" }},
+#              columns = {{ dimension = "phi", ... }}: numbers without headers, with area and header_rows = 0
 # derive:      [[table.derive]] law = "ripple", over = "frequency 17.7..20.2 GHz step 0.1 GHz", requirement = "R-1"
 #              (specflow derive lists the laws; values, where, settings, gives, plane, statistic)
-# pivot:       [table.pivot] header = "Gain @ {{frequency}} GHz", parameter, unit, units = {{ frequency = "GHz" }}
+# pivot:       [table.pivot] header = "Gain @ {{frequency}} GHz", parameter, unit, units = {{ frequency = "GHz" }},
+#              columns = "C:J"; several as [[table.pivot]]
 format = {FORMAT}
 """
 
 
 @dataclass(frozen=True, slots=True)
 class Proposal:
-    """One table as it was understood."""
+    """One table as it was understood: its layout, the mapping it was read by, what it was parted into, what was said.
+
+    ``parts`` are the meanings of its columns, for each part; ``facts`` what stands above it; ``read_as`` the mapping
+    that each part was read by.
+    """
 
     table: FoundTable
     key: str
     mapping: LayoutMapping
-    meanings: Sequence[ColumnMeaning]
+    parts: Sequence[Sequence[ColumnMeaning]]
+    read_as: Sequence[LayoutMapping]
+    facts: Sequence[Fact]
     title: str
 
 
 def propose(proposals: Sequence[Proposal]) -> str:
-    """Return the TOML for the tables of a file."""
-    parts = [HEAD]
+    """Return the TOML for the tables of a file; tables of one layout that are read alike make one entry."""
+    entries = [HEAD]
+    by_key: dict[str, list[Proposal]] = defaultdict(list)
     for one in proposals:
-        columns = tuple(
-            _entry(meaning, one.mapping) for meaning in one.meanings if meaning.role is not Role.PIVOT
-        )
-        reasons = {f"{meaning.letter}:{meaning.header.text}": _reason(meaning) for meaning in one.meanings}
-        mapping = replace(
-            one.mapping,
-            layout=one.key,
-            title=one.mapping.title or one.title,
-            sheet=sheet_pattern(one.table),
-            columns=columns,
-        )
-        parts.append(write_mapping(mapping, reasons))
-    return "\n".join(parts)
+        by_key[one.key].append(one)
+    for alike in by_key.values():
+        columns = [_columns(one, len(alike) > 1) for one in alike]
+        if all(own == columns[0] for own in columns):
+            entries.append(_written(alike[0], columns[0], {}))
+            continue
+        whens = telling_facts([one.facts for one in alike])
+        agreed = [entry for entry in columns[0] if all(entry in own for own in columns)]
+        for one, own, when in zip(alike, columns, whens, strict=True):
+            entries.append(_written(one, own if when else agreed, when))
+    return "\n".join(entries)
+
+
+def telling_facts(facts: Sequence[Sequence[Fact]]) -> list[dict[str, str]]:
+    """For each table the fact that tells it apart: one key that all state, each with another value; {} without one."""
+    told = [{fact.key: fact.value for fact in own} for own in facts]
+    for key in sorted(told[0], key=lambda key: (looks_numeric(told[0][key]), key)):
+        values = [own.get(key, "") for own in told]
+        if all(values) and len({value.casefold() for value in values}) == len(values):
+            return [{key: value} for value in values]
+    return [{} for _ in facts]
+
+
+def _columns(one: Proposal, is_shared: bool) -> list[ColumnMapping]:
+    """The entries of all parts, each column once; without letters where several tables of this layout are in the file."""
+    entries: dict[tuple[str, str], ColumnMapping] = {}
+    for meanings in one.parts:
+        for meaning in meanings:
+            if meaning.role is not Role.PIVOT:
+                entries.setdefault((meaning.header.text, meaning.letter), _entry(meaning, one.mapping))
+    texts = [header_key(text) for text, _ in entries]
+    if not is_shared or len(set(texts)) < len(texts):
+        return list(entries.values())
+    return [replace(entry, column="") if entry.header else entry for entry in entries.values()]
+
+
+def _written(one: Proposal, columns: Sequence[ColumnMapping], when: Mapping[str, str]) -> str:
+    reasons: dict[str, str] = {}
+    for meaning in (meaning for meanings in one.parts for meaning in meanings):
+        for column in (meaning.letter, ""):
+            reasons.setdefault(f"{column}:{meaning.header.text}", _reason(meaning))
+    pivots = one.mapping.pivots
+    if not pivots and one.mapping.matrix is None:
+        found = [pivot for read_as in one.read_as for pivot in read_as.pivots]
+        pivots = tuple(pivot for place, pivot in enumerate(found) if pivot not in found[:place])
+    mapping = replace(
+        one.mapping,
+        layout=one.key,
+        title=one.mapping.title or one.title,
+        sheet=sheet_pattern(one.table),
+        columns=tuple(columns),
+        pivots=pivots,
+        long=one.mapping.long or one.table.long,
+        when=one.mapping.when or when,
+    )
+    return write_mapping(mapping, reasons)
 
 
 def _reason(meaning: ColumnMeaning) -> str:
@@ -66,9 +130,8 @@ def _reason(meaning: ColumnMeaning) -> str:
 
 def _entry(meaning: ColumnMeaning, mapping: LayoutMapping) -> ColumnMapping:
     letter = meaning.letter
-    unit = (
-        "" if meaning.by_row or meaning.by_cell else meaning.unit
-    )  # one unit for all would override those beside
+    beside = meaning.by_row or meaning.by_cell or meaning.header.unit_from
+    unit = "" if beside else meaning.unit  # one unit for all would override those beside
     used = mapping.column(meaning.header.text, letter)
     if used is not None:
         return used

@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from collections import Counter
-from collections.abc import Sequence
+from collections import defaultdict
+from collections.abc import Mapping, Sequence
 from dataclasses import replace
 
 import numpy as np
@@ -19,98 +19,132 @@ Record = tuple[object, ...]
 
 
 def without_repeats(tables: Sequence[MeasuredTable]) -> list[MeasuredTable]:
-    """Leave out rows all of whose records (quantity, item, conditions and value) stand in an earlier table of the file."""
+    """Leave out rows all of whose records (quantity, item, conditions, value) stand in an earlier table of the file."""
     seen: dict[Record, str] = {}
     result = []
-    shared = _shared_quantities(tables)
+    doubles = _shared_values(tables)
     for table in tables:
-        if (
-            table.document is None
-            or table.columns is None
-            or table.columns.conditions.size > _MOST_ROWS
-            or not _quantities(table) & shared
-        ):
+        rows = _candidates(table, doubles)
+        if table.document is None or table.columns is None or not len(rows):
             result.append(table)
             continue
-        rows = _records(table.document, table.columns)
-        again = np.array([bool(row) and all(record in seen for record in row) for row in rows], bool)
+        records = _records(table.document, table.columns, rows)
         where = table.place if not table.sheet else f"{table.sheet}!{table.place}"
-        if again.any():
-            first = next(seen[row[0]] for row, is_again in zip(rows, again.tolist(), strict=True) if is_again)
-            table = _reduced(table, again, first)
+        again = [(name, place, seen[one]) for name, place, one in records if one in seen]
+        if again:
+            table = _reduced(table, again)
         result.append(table)
-        for row in rows:
-            for record in row:
-                seen.setdefault(record, where)
+        for _, _, record in records:
+            seen.setdefault(record, where)
     return result
 
 
-def _quantities(table: MeasuredTable) -> set[str]:
-    return set() if table.document is None else {one.quantity.parameter for one in table.document.values}
+def _shared_values(tables: Sequence[MeasuredTable]) -> dict[tuple[str, str], NDArray[np.float64]]:
+    """The values that more than one table has, of each parameter and unit: only these can be said twice."""
+    found: dict[tuple[str, str], list[NDArray[np.float64]]] = defaultdict(list)
+    for table in tables:
+        own: dict[tuple[str, str], list[NDArray[np.float64]]] = defaultdict(list)
+        for value in (
+            table.document.values if table.document is not None and table.columns is not None else ()
+        ):
+            assert table.columns is not None  # a table with a document has its arrays
+            own[value.quantity.parameter, value.unit].append(table.columns.values[value.name].low)
+        for key, arrays in own.items():
+            found[key].append(np.unique(np.concatenate(arrays)))
+    shared = {}
+    for key, arrays in found.items():
+        values, counts = np.unique(np.concatenate(arrays), return_counts=True)
+        shared[key] = values[counts > 1] if len(arrays) > 1 else values[:0]
+    return shared
 
 
-def _shared_quantities(tables: Sequence[MeasuredTable]) -> set[str]:
-    """The parameters that more than one table has."""
-    counted = Counter(parameter for table in tables for parameter in _quantities(table))
-    return {parameter for parameter, count in counted.items() if count > 1}
+def _candidates(
+    table: MeasuredTable, doubles: Mapping[tuple[str, str], NDArray[np.float64]]
+) -> NDArray[np.intp]:
+    """The rows that may be said in another table, too."""
+    if table.document is None or table.columns is None:
+        return np.zeros(0, np.intp)
+    may = np.zeros(table.columns.conditions.size, bool)
+    for value in table.document.values:
+        low = table.columns.values[value.name].low
+        may |= np.isin(low, doubles[value.quantity.parameter, value.unit])
+    return np.flatnonzero(may)[:_MOST_ROWS]
 
 
-def _records(document: EvidenceTable, columns: EvidenceColumns) -> list[list[Record]]:
-    """The records of each row; two of one table never count as the same."""
-    conditions = columns.conditions
-    said: list[list[Record]] = [[] for _ in range(conditions.size)]
+def _records(
+    document: EvidenceTable, columns: EvidenceColumns, rows: NDArray[np.intp]
+) -> list[tuple[str, int, Record]]:
+    """The records of these rows: (name of the value column, row, what the record says)."""
+    conditions = columns.conditions.take(rows)
+    said: list[list[Record]] = [[] for _ in rows]
     for name, numbers in sorted(conditions.numeric.items()):
         unit = conditions.units.get(name, "")
-        for row, number in enumerate(numbers.tolist()):
+        for place, number in enumerate(numbers.tolist()):
             if number == number:
-                said[row].append((name, unit, number))
+                said[place].append((name, unit, number))
     for name, words in sorted(conditions.text.items()):
-        for row in range(conditions.size):
-            if words.word(row):
-                said[row].append((name, "", words.word(row).casefold()))
-    records: list[list[Record]] = [[] for _ in range(conditions.size)]
+        for place in range(len(rows)):
+            if words.word(place):
+                said[place].append((name, "", words.word(place).casefold()))
+    items = columns.items.take(rows)
+    dates = None if columns.dates is None else columns.dates.take(rows)
     about = (document.block, document.method, document.stage, document.set_up, document.performer)
+    records: list[tuple[str, int, Record]] = []
     for value in document.values:
         quantity = value.quantity.model_dump_json()
-        arrays = columns.values[value.name]
-        for row, (low, high) in enumerate(zip(arrays.low.tolist(), arrays.high.tolist(), strict=True)):
-            if low == low:
-                item = columns.items.word(row).casefold()
-                date = columns.dates.word(row) if columns.dates is not None else document.performed_on
-                records[row].append((about, quantity, value.unit, item, date, tuple(said[row]), low, high))
+        low, high = (array[rows].tolist() for array in _ends(columns.values[value.name]))
+        for place, row in enumerate(rows.tolist()):
+            if low[place] == low[place]:
+                date = dates.word(place) if dates is not None else document.performed_on
+                one = (about, quantity, value.unit, items.word(place).casefold(), date)
+                records.append((value.name, row, (*one, tuple(said[place]), low[place], high[place])))
     return records
 
 
-def _reduced(table: MeasuredTable, again: NDArray[np.bool_], where: str) -> MeasuredTable:
-    """The table without these rows, which stand at ``where`` already."""
+def _ends(arrays: ValueArrays) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    return arrays.low, arrays.high
+
+
+def _reduced(table: MeasuredTable, again: Sequence[tuple[str, int, str]]) -> MeasuredTable:
+    """The table without these records (column, row, where they stand already); a row without any is left out."""
     assert table.document is not None and table.columns is not None
-    count = int(again.sum())
-    left = np.flatnonzero(~again)
-    if not len(left):
-        note = f"all {count} rows say what {where} says (quantity, item, conditions, value): they were not taken twice"
-        return replace(table, document=None, columns=None, values=0, notes=(*table.notes, note))
     columns = table.columns
-    taken = EvidenceColumns(
-        columns.conditions.take(left),
-        {
-            name: ValueArrays(
-                low := arrays.low[left],
-                low if arrays.high is arrays.low else arrays.high[left],
-                None if arrays.u is None else arrays.u[left],
-            )
-            for name, arrays in columns.values.items()
-        },
-        columns.source_rows[left],
-        columns.items.take(left),
-        None if columns.dates is None else columns.dates.take(left),
-        {name: words.take(left) for name, words in columns.extra.items()},
-    )
+    values = {}
+    for name, arrays in columns.values.items():
+        marked = np.zeros(len(arrays.low), bool)
+        marked[[row for one, row, _ in again if one == name]] = True
+        low = np.where(marked, np.nan, arrays.low)
+        high = low if arrays.high is arrays.low else np.where(marked, np.nan, arrays.high)
+        values[name] = ValueArrays(low, high, arrays.u)
+    emptied = np.zeros(columns.conditions.size, bool)
+    emptied[[row for _, row, _ in again]] = True
+    emptied &= np.all([np.isnan(one.low) for one in values.values()], axis=0)
+    left = np.flatnonzero(~emptied)
+    note = f"{len(again)} values say what {again[0][2]} says (quantity, item, conditions, value): they were not taken twice"
+    if not len(left):
+        return replace(table, document=None, columns=None, values=0, notes=(*table.notes, note))
+    taken = _taken(replace(columns, values=values), left)
     document = table.document.model_copy(update={"rows": len(left)})
     document = document.model_copy(update={"digest": content_digest(document, taken)})
-    note = (
-        f"{count} rows say what {where} says (quantity, item, conditions, value): they were not taken twice"
-    )
-    values = sum(int(np.count_nonzero(~np.isnan(one.low))) for one in taken.values.values())
+    count = sum(int(np.count_nonzero(~np.isnan(one.low))) for one in taken.values.values())
     return replace(
-        table, document=document, columns=taken, rows=len(left), values=values, notes=(*table.notes, note)
+        table, document=document, columns=taken, rows=len(left), values=count, notes=(*table.notes, note)
+    )
+
+
+def _taken(columns: EvidenceColumns, rows: NDArray[np.intp]) -> EvidenceColumns:
+    """These rows of all columns."""
+    values = {}
+    for name, arrays in columns.values.items():
+        low = arrays.low[rows]
+        high = low if arrays.high is arrays.low else arrays.high[rows]
+        values[name] = ValueArrays(low, high, None if arrays.u is None else arrays.u[rows])
+    return replace(
+        columns,
+        conditions=columns.conditions.take(rows),
+        values=values,
+        source_rows=columns.source_rows[rows],
+        items=columns.items.take(rows),
+        dates=None if columns.dates is None else columns.dates.take(rows),
+        extra={name: words.take(rows) for name, words in columns.extra.items()},
     )

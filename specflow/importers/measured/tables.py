@@ -26,7 +26,7 @@ from specflow.importers.measured.header_cells import (
     with_unit,
 )
 from specflow.importers.measured.header_text import header_key
-from specflow.importers.measured.mapping_parts import PivotMapping
+from specflow.importers.measured.mapping_parts import LongMapping, PivotMapping
 from specflow.importers.measured.result import Question
 from specflow.importers.measured.statements import is_reading, statement_rows, statement_text
 from specflow.importers.readers import Grid, is_blank, looks_numeric
@@ -77,12 +77,14 @@ class FoundTable:
     ``top`` is the first row that may speak about it (title, key–value rows); ``rows`` int32 are the row numbers that
     hold data, among ``first_row`` up to, not including, ``stop_row``. ``headers`` are named columns in order;
     ``unnamed`` are columns with cells and no header. ``stepped_over`` are rows that are no data, ``between`` those of
-    them with data below. ``part`` says which part of a table it is where one was parted (by quantity, by a group of
-    columns), ``facts`` what is said of that part alone; ``axis`` is a condition that no column holds, ``pivots`` are
-    columns of one quantity at several conditions, as their headers say; ``doubts`` are
-    questions about where the table stands and how it lies, ``notes`` what is said about that. ``title_rows`` are rows
-    above that belong to the headers, ``group_row`` one that is read already. ``words_above`` stand for the headers of a table that has none; one without any
-    words is not known again (``has_words``).
+    them with data below.
+
+    ``part`` says which part of a table it is where one was parted (by quantity, by a group of columns), ``facts`` what
+    is said of that part alone. ``axis`` is a condition that no column holds, ``pivots`` are columns of one quantity at
+    several conditions, ``long`` says that the quantity stood in the rows. ``doubts`` are questions about where the
+    table stands and how it lies, ``notes`` what is said about that. ``title_rows`` are rows above that belong to the
+    headers, ``group_row`` one that is read already. ``words_above`` stand for the headers of a table that has none; one
+    without any words is not known again (``has_words``).
     """
 
     grid: Grid
@@ -100,6 +102,7 @@ class FoundTable:
     facts: tuple[Fact, ...] = ()
     axis: Axis | None = None
     pivots: tuple[PivotMapping, ...] = ()
+    long: LongMapping | None = None
     doubts: tuple[Question, ...] = ()
     notes: tuple[str, ...] = ()
     title_rows: tuple[int, ...] = ()
@@ -134,7 +137,7 @@ class HeaderRow:
 
 
 def find_tables(grid: Grid, recognises: Recognises) -> tuple[FoundTable, ...]:
-    """Return the tables with a row of headers, from top to bottom; ``recognises`` says whether a header means something."""
+    """Return the tables with a row of headers, from top to bottom; ``recognises`` says whether a header is known."""
     tables = []
     top = grid.first_row
     while (header := find_header(grid, top, recognises)) is not None:
@@ -356,6 +359,13 @@ class _Body:
             return False
         return self._repeats(texts) or self._begins_another(row, texts)
 
+    def _is_below_title(self, row: int) -> bool:
+        """Whether a line of words stands over headers that repeat: then they begin another table of the layout."""
+        above = row - 1
+        while above > self._first and all(is_blank(value) for value in self._grid.row(above)):
+            above -= 1
+        return any(remark.row == above and remark.text for remark in self._remarks)
+
     def _repeats(self, texts: dict[int, str]) -> bool:
         return {header_key(text) for text in texts.values()} <= {
             header_key(header.text) for header in self._headers
@@ -368,6 +378,8 @@ class _Body:
         row = self._first + place
         texts = _words(self._grid, row)
         if len(texts) >= 2 and self._repeats(texts):
+            if self._is_below_title(row):
+                return "ends"
             self._remarks.append(Remark(row, "", f"row {row} repeats the headers"))
             return "skip"
         if len(texts) >= 2 and self._begins_another(row, texts):

@@ -1,4 +1,4 @@
-"""Tables of the same headers that only what stands above each tells apart: "28 GHz" over one, "29 GHz" over the next."""
+"""Tables of the same headers that only their titles tell apart: "28 GHz" over one, "29 GHz" over the next."""
 
 from __future__ import annotations
 
@@ -72,7 +72,7 @@ def _has_column(table: FoundTable, fact: Fact) -> bool:
 
 def _question(text: str, cell: str, places: Sequence[int], tables: Sequence[FoundTable]) -> Question:
     others = ", ".join(tables[place].place for place in places)
-    what = f"{text[:60]!r} stands over one of {len(places)} tables of the same headers ({others}); what it says is not clear"
+    what = f"{text[:60]!r} stands over one of {len(places)} tables of the same headers ({others}); its meaning is open"
     remedy = (
         'write it as a key with its value ("Frequency: 28 GHz", "DUT: SN 7"), or let a mapping take it: [table.stated] '
         'frequency = "above"'
