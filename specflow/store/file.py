@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 import sqlite3
 from collections.abc import Iterator
 from contextlib import AbstractContextManager, closing, contextmanager, suppress
@@ -19,6 +20,8 @@ if TYPE_CHECKING:
 APPLICATION_ID = 0x5350464C
 
 _HEADER = b"SQLite format 3\0"
+#: How a file is opened that nobody can change: without a log, an index or a lock beside it.
+_AS_IT_STANDS = "mode=ro&immutable=1"
 
 
 @contextmanager
@@ -111,9 +114,11 @@ class ProjectFile:
         """Open the file; it must exist. Transactions are begun by hand (``isolation_level`` None).
 
         A project that is only to be read is opened for writing too, with writes forbidden: SQLite deletes the log and
-        its index when the last connection is closed, but one of mode=ro makes them and may not delete them. A file
-        that may not be written SQLite opens to be read by itself.
+        its index when the last connection is closed, but one of mode=ro makes them and may not delete them. So would
+        one of a file that may not be written in a folder that may; where nobody has it open it is read as it stands.
         """
+        if not self._may_be_written() and not self._is_open():
+            return self._connect(_AS_IT_STANDS)
         connection = self._connect("mode=rw")
         try:
             connection.execute("PRAGMA schema_version")
@@ -126,11 +131,18 @@ class ProjectFile:
             no_room = self.read_only and error.sqlite_errorname.startswith("SQLITE_IOERR_SHM")
             if not (no_room or _cannot_write(error)) or self._has_log():
                 raise
-            return self._connect("mode=ro&immutable=1")
+            return self._connect(_AS_IT_STANDS)
         except BaseException:
             connection.close()
             raise
         return connection
+
+    def _may_be_written(self) -> bool:
+        return os.access(self.path, os.W_OK, effective_ids=os.access in os.supports_effective_ids)
+
+    def _is_open(self) -> bool:
+        """Whether another connection is open, or one ended without closing."""
+        return any(Path(f"{self.path}{suffix}").exists() for suffix in ("-wal", "-shm"))
 
     def _has_log(self) -> bool:
         try:

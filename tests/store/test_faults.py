@@ -63,6 +63,38 @@ def test_the_last_of_several_readers_leaves_nothing_beside_the_project(project: 
     assert [file.name for file in project.parent.iterdir()] == [project.name]
 
 
+@contextmanager
+def as_somebody_else() -> Iterator[None]:
+    """Act as a user whom the rights of files bind, as they do not bind root."""
+    user = os.geteuid()
+    if user == 0:
+        os.seteuid(65534)
+    try:
+        yield
+    finally:
+        os.seteuid(user)
+
+
+@pytest.mark.skipif(not hasattr(os, "geteuid"), reason="file permissions work differently here")
+def test_a_file_that_may_not_be_written_is_read_and_nothing_is_left_beside_it(project: Path) -> None:
+    with tempfile.TemporaryDirectory() as name:  # the folders of pytest may not be looked into by everybody
+        folder = Path(name)
+        folder.chmod(0o777)
+        copy = folder / project.name
+        shutil.copy(project, copy)
+        copy.chmod(0o444)
+        with open_project(copy, read_only=True) as store:
+            assert len(store.history()) == 2  # what is imported late the other user might not be able to read
+        with as_somebody_else():
+            for read_only in (True, False):
+                with open_project(copy, read_only=read_only) as store:
+                    assert store.load().revision == 2
+                    assert len(store.history()) == 2
+            with open_project(copy) as store, pytest.raises(StoreError, match="the project is read-only"):
+                store.apply(adding(a_block("TX")), by=ME)
+        assert [file.name for file in folder.iterdir()] == [copy.name]
+
+
 def test_a_connection_to_read_with_does_not_write(project: Path) -> None:
     with (
         place_of(project, read_only=True).reading() as run,
