@@ -114,8 +114,9 @@ def test_an_older_project_is_copied_and_upgraded_when_opened(
         store.apply(changes(), columns={"T-1": some_evidence()}, by="me")
     kept_back.rename(next_schema)
 
-    with pytest.raises(StoreError, match="older schema"):
+    with pytest.raises(StoreError, match="older schema") as refused:
         open_project(where, read_only=True)
+    assert "specflow load" in (refused.value.hint or "")
     with open_project(where, clock=noon, backup_folder=tmp_path) as store:
         (note,) = store.notes
         copies = list(tmp_path.glob(f"*-schema{NEWEST}-20260504T120000.specflow"))

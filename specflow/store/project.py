@@ -115,7 +115,8 @@ def _upgrade(place: Place, clock: Clock, backup_folder: Path | None) -> str:
         raise StoreError(
             "the project has an older schema and is opened to be read only",
             where=place.name,
-            hint="open it once for writing; it is copied and upgraded then",
+            hint="a command that stores (specflow load, specflow attach, specflow allocate; not with --dry-run) copies it "
+            "aside and upgrades it first",
         )
     with translated(place.name):
         with place.reading() as run:

@@ -18,6 +18,6 @@ def project_history(store: ProjectStore, code: str = "", *, last: int | None = N
     if code and not entries:
         known = list(dict.fromkeys(entry.change.id for entry in store.history()))
         others = [one for one in known if code_key(one) != code_key(code)]
-        raise not_found("document", code, others, listing="specflow history lists everything that was stored")
+        raise not_found("id", code, others, listing="specflow history lists everything that was stored")
     kept = entries if last is None else entries[-last:] if last > 0 else []
     return history_table(f"History of {code or 'the project'}", kept)

@@ -73,7 +73,7 @@ def test_status_of_one_state_only(command: Command, project: Path) -> None:
         (("status", "--label", "red"), "there is no state 'red'", "states: not applicable, "),
         (("status", "--as-of", "1.6.2026"), "'1.6.2026' is not a date", "YYYY-MM-DD"),
         (("trace", "pa_bnech.xlsx"), "'pa_bnech.xlsx'", "near to it: pa_bench.xlsx"),
-        (("history", "PA-99"), "there is no document 'PA-99'", "near to it: PA-"),
+        (("history", "PA-99"), "there is no id 'PA-99'", "near to it: PA-"),
         (("status", "--project", "nowhere.specflow"), "there is no such project", "check the path"),
     ],
 )
