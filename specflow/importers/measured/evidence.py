@@ -13,6 +13,7 @@ from specflow.importers.measured.column import ColumnMeaning
 from specflow.importers.measured.conditions import merged_items, read_conditions
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.corrections import with_corrections
+from specflow.importers.measured.directions import add_directions
 from specflow.importers.measured.document import Identity, Said, make_document
 from specflow.importers.measured.facts import states_something
 from specflow.importers.measured.header_text import header_key
@@ -222,6 +223,7 @@ def _evidence(
     conditions = read_conditions(work.table, work.meanings, work.stated, work.rows, work.rejects)
     work.questions += conditions.questions
     work.notes += conditions.notes
+    add_directions(work, conditions)
     add_axis(work, conditions)
     values = read_values(work, conditions.columns)
     dates = work.of(Role.DATE)

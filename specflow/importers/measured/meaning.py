@@ -11,7 +11,7 @@ from collections import Counter
 from collections.abc import Mapping
 from dataclasses import replace
 
-from specflow.conditions import find_dimension, known_dimension
+from specflow.conditions import KnownDimension, find_dimension, known_dimension
 from specflow.importers.measured.cell_units import is_unit_column
 from specflow.importers.measured.column import ColumnMeaning, Heading
 from specflow.importers.measured.condition_column import (
@@ -25,6 +25,7 @@ from specflow.importers.measured.condition_column import (
 )
 from specflow.importers.measured.constants import ConstantColumn, read_constants
 from specflow.importers.measured.context import Context
+from specflow.importers.measured.directions import cosine_of
 from specflow.importers.measured.formats import Format, format_of, header_of, is_plain_head
 from specflow.importers.measured.header_cells import HeaderCell
 from specflow.importers.measured.header_text import header_key, read_header
@@ -148,6 +149,9 @@ class _Reader:
 
     def _by_words(self, heading: Heading) -> ColumnMeaning:
         parts = heading.parts
+        direction = self._direction(heading)
+        if direction:
+            return condition_of(heading, direction, heading.unit(), f"the header names {direction.title}")
         words = uncertainty_of(parts)
         if words is not None:
             return uncertainty_column(heading, words, heading.unit())
@@ -180,6 +184,16 @@ class _Reader:
         if is_plain_head(parts.name) and self._stated.text("format"):
             return self._formatted(heading, unit)
         return self._unknown(heading)
+
+    def _direction(self, heading: Heading) -> KnownDimension | None:
+        """The dimension of columns that say a direction by a letter, or by "angle" under a cut that is stated."""
+        cosine = cosine_of(heading.parts.name, [read_header(one.text).name for one in self._table.headers])
+        if cosine:
+            return known_dimension(cosine)
+        if header_key(heading.parts.name) not in ("angle", "cutangle"):
+            return None
+        varies = self._stated.text("cut_varies")
+        return known_dimension(varies or ("cut_angle" if "cut_plane" in self._stated.conditions else ""))
 
     def _of_format(self, meaning: ColumnMeaning) -> ColumnMeaning:
         """Doubt a value that the format stated above the table contradicts: a phase is no value of a gain."""

@@ -49,6 +49,7 @@ NAMES: Mapping[str, tuple[str, ...]] = {
                     "standard uncertainty"),
     "temperature": (),
     "corrected": (),
+    "directions": (),
     "corrections": ("correction", "corrections", "corrections applied"),
 }  # fmt: skip
 

@@ -45,6 +45,9 @@ _CALIBRATION = re.compile(
     r"^(?P<asset>.*?)\s*\bcal(?:ibration|\.)?\s*(?:due|expir\w*|valid until|until)\b.*$", re.IGNORECASE
 )
 _NAMELESS = "instrument"
+_CUT = re.compile(r"^(?P<angle>[A-Za-zθφϕ]+)\s*=?\s*(?P<value>[+\-−]?[0-9].*)$")
+#: What varies along a cut at a fixed value of the other angle.
+_ACROSS = {"phi": "theta", "theta": "phi", "azimuth": "elevation", "elevation": "azimuth"}
 _UNIT_IN_BRACKETS = re.compile(r"^\(\s*[Uu]nits?\s*[:=]\s*(?P<unit>[^()]+?)\s*\)$")
 _REVISION = re.compile(
     r"^(?P<name>.*\S)[\s,]+(?:rev(?:ision)?|issue|iss)\.?\s*(?P<revision>\S+)$", re.IGNORECASE
@@ -263,6 +266,12 @@ class _Collector:
             self._leave(key, text, cell)
 
     def _take_condition(self, name: str, key: str, text: str, by: str, cell: str) -> None:
+        cut = _CUT.match(text) if name == "cut_plane" else None
+        across = find_dimension(cut["angle"]) if cut else None
+        if cut is not None and across is not None and across.name in _ACROSS:
+            self.stated.said["cut_varies"] = Said(_ACROSS[across.name], by, key)
+            self._take_condition(across.name, key, cut["value"], by, cell)
+            return
         known = known_dimension(name)
         if known is None or known.comparison is Comparison.TEXT:
             found: StatedCondition | str = StatedCondition(name, text, "", by)
