@@ -88,6 +88,8 @@ class Cells:
 
     def mark(self, marks: OddMarks, styles: Styles) -> None:
         """Add what is odd, and the extent of the cells that hold something."""
+        rows, columns = self.row, self.column
+        marks.mention(int(rows.min()), int(columns.min()), int(rows.max()), int(columns.max()))
         no_value = self.formula & ~self.cached & ~self.error
         filled = self.valued | no_value
         if filled.any():

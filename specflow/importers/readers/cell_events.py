@@ -110,6 +110,7 @@ class SheetEvents:
         self._formula, self._value, self._has_value, self._inline = False, "", False, False
 
     def _end_cell(self) -> None:
+        self._marks.mention(self._row, self._column, self._row, self._column)
         odd = self._oddity(self._cell.get("t", "n"))
         if odd is not None:
             self._marks.add_one(self._row, self._column, odd)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from specflow.errors import FileError
 from specflow.importers.readers.delimiter import AmbiguousComma, Layout, find_layout
-from specflow.importers.readers.encoding import decode
+from specflow.importers.readers.encoding import decode, without_nuls
 from specflow.importers.readers.grid import Grid
 from specflow.importers.readers.large_text import read_large_text
 from specflow.importers.readers.source import Source
@@ -21,15 +21,11 @@ def read_csv(source: Source) -> list[Grid]:
     """The table of a text file. Raises FileError for content that is no text or that nothing can be made of."""
     if len(source.content) > LARGE_BYTES and (grid := read_large_text(source, _layout)) is not None:
         return [grid]
-    text, notes = decode(source)
-    lines = text.split("\n")
-    if not lines[-1]:
-        lines.pop()
-    if not any(map(str.strip, lines)):
-        raise FileError("the file holds nothing but blanks", where=source.name, hint="export it again")
-    part = TextLines(text, lines)
-    layout = _layout(source, lines, part.comments)
-    _check_size(source, text, lines, layout)
+    written, notes = decode(source, keep_nuls=True)
+    part, layout = _read_layout(source, without_nuls(written, True))
+    if "\0" in written and layout.delimiter != ",":
+        part, layout = _read_layout(source, without_nuls(written, False))
+    _check_size(source, part, layout)
     return [
         Grid(
             name=source.name,
@@ -43,8 +39,18 @@ def read_csv(source: Source) -> list[Grid]:
     ]
 
 
-def _check_size(source: Source, text: str, lines: list[str], layout: Layout) -> None:
-    fields = text.count(layout.delimiter) + len(lines)
+def _read_layout(source: Source, text: str) -> tuple[TextLines, Layout]:
+    lines = text.split("\n")
+    if not lines[-1]:
+        lines.pop()
+    if not any(map(str.strip, lines)):
+        raise FileError("the file holds nothing but blanks", where=source.name, hint="export it again")
+    part = TextLines(text, lines)
+    return part, _layout(source, lines, part.comments)
+
+
+def _check_size(source: Source, part: TextLines, layout: Layout) -> None:
+    fields = part.count(layout.delimiter)
     if fields > MAX_FIELDS:
         raise FileError(
             f"the file has about {fields:,} fields, more than {MAX_FIELDS:,}",

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import codecs
+import re
 
 from specflow.errors import FileError
 from specflow.importers.readers.source import Source
@@ -15,29 +16,39 @@ _MARKS = (
     (codecs.BOM_UTF16_BE, "utf-16"),
 )
 _SAMPLE = 4096
+_INSIDE_NUMBER = re.compile(r"(?<=[0-9.eE+\-])\0+(?=[0-9.eE+\-])")
+_INSIDE_NUMBER_WITH_COMMA = re.compile(r"(?<=[0-9.,eE+\-])\0+(?=[0-9.,eE+\-])")
 
 
-def decode(source: Source) -> tuple[str, list[str]]:
+def decode(source: Source, keep_nuls: bool = False) -> tuple[str, list[str]]:
     """The text with ``\\n`` at line ends and without NUL, and notes on everything that was not plain UTF-8.
 
-    Raises FileError for content that is no text.
+    ``keep_nuls`` leaves the NULs to the caller, who knows better what parts the fields. Raises FileError for content
+    that is no text.
     """
     notes: list[str] = []
     text = _decode(source, notes)
     if nuls := text.count("\0"):
-        text = text.replace("\0", "")
+        text = text if keep_nuls else without_nuls(text, True)
         notes.append(f"{nuls} NUL characters were left out")
-    if marks := text.count("\ufeff"):
-        text = text.replace("\ufeff", "")
-        notes.append(f"{marks} byte-order marks inside the text were left out")
     text = text.replace("\r\n", "\n").replace("\r", "\n")
+    if marks := text.count("\n\ufeff"):
+        text = text.replace("\n\ufeff", "\n")
+        notes.append(f"{marks} byte-order marks inside the text were left out")
     sample = text[:_SAMPLE]
-    control = sum(character < " " and character not in "\t\n\x0b\x0c\x1a\x1b" for character in sample)
+    control = sum(character < " " and character not in "\0\t\n\x0b\x0c\x1a\x1b" for character in sample)
     if control > len(sample) // 50:
         raise FileError(
             "this is no text file", where=source.name, hint="export the table as csv or save it as .xlsx"
         )
     return text, notes
+
+
+def without_nuls(text: str, comma_parts: bool) -> str:
+    """The text without NUL. Those with which instruments pad fields stand at the ends of fields; inside a number NUL
+    has taken the place of a digit, and becomes U+FFFD, which no number contains."""
+    inside = _INSIDE_NUMBER if comma_parts else _INSIDE_NUMBER_WITH_COMMA
+    return inside.sub("\ufffd", text).replace("\0", "")
 
 
 def _decode(source: Source, notes: list[str]) -> str:

@@ -9,6 +9,7 @@ from __future__ import annotations
 
 import struct
 from collections.abc import Iterator
+from io import StringIO
 
 from xlrd import compdoc
 
@@ -40,7 +41,7 @@ def formulas_never_calculated(content: bytes) -> dict[int, frozenset[Cell]]:
 def _stream(content: bytes) -> bytes:
     if not content.startswith(compdoc.SIGNATURE):
         return content
-    document = compdoc.CompDoc(content)
+    document = compdoc.CompDoc(content, logfile=StringIO())  # it prints what it doubts
     for name in ("Workbook", "Book"):
         memory, base, length = document.locate_named_stream(name)
         if memory:

@@ -27,7 +27,7 @@ def formulas(source: Source, sheet: str, cells: Collection[Cell]) -> dict[Cell, 
     try:
         for piece in archive.stream(part):
             reader.parser.Parse(piece, False)
-    except expat.ExpatError as error:
+    except (expat.ExpatError, LookupError, ValueError) as error:
         raise archive.damaged(f"sheet {sheet!r}: its XML is not well-formed ({error})") from error
     return reader.result()
 

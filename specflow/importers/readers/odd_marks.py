@@ -11,6 +11,7 @@ Integers = NDArray[np.int64]
 Runs = tuple[Integers, Integers, Integers, Integers]
 """Column, first row, last row and code of runs; four arrays of one length."""
 
+Bounds = tuple[int, int, int, int]
 _MOST_SINGLE = 65536
 
 
@@ -21,7 +22,8 @@ class OddMarks:
         self._legend: dict[OddCell, int] = {}
         self._runs: list[Runs] = []
         self._single: list[tuple[int, int, int]] = []
-        self._extent: tuple[int, int, int, int] | None = None
+        self._extent: Bounds | None = None
+        self._mentioned: Bounds | None = None
         self.hidden_rows: set[int] = set()
 
     def code(self, cell: OddCell) -> int:
@@ -55,17 +57,19 @@ class OddMarks:
 
     def extend(self, first_row: int, first_column: int, last_row: int, last_column: int) -> None:
         """Cells that hold something lie within these bounds."""
-        if self._extent is None:
-            self._extent = (first_row, first_column, last_row, last_column)
-        else:
-            top, left, bottom, right = self._extent
-            self._extent = (
-                min(top, first_row), min(left, first_column), max(bottom, last_row), max(right, last_column)
-            )  # fmt: skip
+        self._extent = _around(self._extent, (first_row, first_column, last_row, last_column))
 
     def extent(self) -> CellRange | None:
         """The smallest range around all cells that hold something."""
         return CellRange(*self._extent) if self._extent else None
+
+    def mention(self, first_row: int, first_column: int, last_row: int, last_column: int) -> None:
+        """Cells that the file mentions, even if they hold nothing, lie within these bounds."""
+        self._mentioned = _around(self._mentioned, (first_row, first_column, last_row, last_column))
+
+    def mentioned(self) -> CellRange | None:
+        """The smallest range around all cells that the file mentions."""
+        return CellRange(*self._mentioned) if self._mentioned else None
 
     def cells(self) -> OddCells:
         """The marks as runs; of several marks on one cell the last one added stands."""
@@ -78,6 +82,12 @@ class OddMarks:
             OddRun(column, first, last, legend[code])
             for column, first, last, code in zip(*(part.tolist() for part in runs), strict=True)
         )
+
+
+def _around(known: Bounds | None, more: Bounds) -> Bounds:
+    if known is None:
+        return more
+    return min(known[0], more[0]), min(known[1], more[1]), max(known[2], more[2]), max(known[3], more[3])
 
 
 def _as_runs(rows: Integers, columns: Integers, codes: Integers) -> Runs:

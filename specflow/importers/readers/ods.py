@@ -51,7 +51,7 @@ def _feed(events: OdsEvents, archive: Archive, part: str) -> None:
         error = archive.damaged(f"{part}: {problem}")
         error.where = ", ".join(filter(None, (archive.name, problem.place)))
         raise error from problem
-    except ExpatError as error:
+    except (ExpatError, LookupError, ValueError) as error:  # LookupError: an encoding that there is not
         raise archive.damaged(f"{part} is no well-formed XML ({error})") from error
 
 

@@ -28,10 +28,12 @@ _START, _END = b"<sheetData>", b"</sheetData>"
 
 @dataclass(frozen=True, slots=True)
 class SheetScan:
-    """What the scan found in one sheet; ``extent`` is None when no cell holds anything."""
+    """What the scan found in one sheet; ``extent`` is None when no cell holds anything. ``mentioned`` goes around
+    empty cells, too, for which bulk reading takes memory all the same."""
 
     odd: OddCells
     extent: CellRange | None
+    mentioned: CellRange | None
     hidden_rows: frozenset[int]
     hidden_columns: frozenset[int]
     merged: tuple[CellRange, ...]
@@ -61,7 +63,7 @@ def scan_sheet(
             return _scan_events(stream(), styles)
     except SheetProblem as problem:
         raise refuse(str(problem)) from problem
-    except expat.ExpatError as error:
+    except (expat.ExpatError, LookupError, ValueError) as error:  # LookupError: an encoding that there is not
         raise refuse(f"its XML is not well-formed ({error})") from error
 
 
@@ -93,6 +95,7 @@ def _result(marks: OddMarks, shell: SheetEvents) -> SheetScan:
     return SheetScan(
         odd=marks.cells(),
         extent=marks.extent(),
+        mentioned=marks.mentioned(),
         hidden_rows=frozenset(marks.hidden_rows),
         hidden_columns=frozenset(shell.hidden_columns),
         merged=tuple(shell.merged),

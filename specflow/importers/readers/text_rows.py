@@ -33,6 +33,10 @@ class TextLines:
             lines, next(line for line in lines if line.strip()) if first is None else first
         )
 
+    def count(self, delimiter: str) -> int:
+        """About how many fields there are."""
+        return self._text.count(delimiter) + len(self._lines)
+
     def rows(self, layout: Layout) -> list[list[Value]]:
         """The cells of each line; blank lines are empty rows."""
         rows = self._parted(layout)

@@ -2,15 +2,16 @@
 
 from __future__ import annotations
 
-import io
+import re
 from collections.abc import Sequence
 from xml.parsers.expat import ExpatError
 
-from python_calamine import CalamineSheet, CalamineWorkbook
+from python_calamine import CalamineSheet
 
 from specflow.errors import FileError
 from specflow.importers.readers.archive import Archive
 from specflow.importers.readers.book import Book, read_book
+from specflow.importers.readers.bulk import BulkError, bulk_workbook
 from specflow.importers.readers.cell_values import CellValues
 from specflow.importers.readers.contents import Content, content_of
 from specflow.importers.readers.grid import CellRange, Grid, OddKind, address
@@ -29,6 +30,7 @@ MAX_STREAMED_CELLS = 64_000_000
 STREAMED_BYTES = 32 * 1024 * 1024
 """Sheets whose XML is longer are read into typed columns: about 700,000 cells."""
 
+_UNIQUE = re.compile(rb"uniqueCount\s*=\s*[\"']([^\"']*)")
 _TEXTS, _MACROS = "xl/sharedStrings.xml", "xl/vbaProject.bin"
 
 
@@ -38,6 +40,7 @@ def read_xlsx(source: Source) -> list[Grid]:
     book = read_book(archive)
     if _TEXTS in archive:
         archive.check_text(_TEXTS)
+        _check_text_count(archive)
     sheets = [_Sheet(archive, name, part, book) for name, part in book.sheets.items()]
     if not any(sheet.scan.extent for sheet in sheets):
         raise FileError(
@@ -72,6 +75,11 @@ class _Sheet:
         if archive.size(part) > STREAMED_BYTES:
             values = CellValues(book.styles, _shared_texts(archive))
         self.scan = _scan(archive, name, part, book.styles, values)
+        if not self.scan.has_values and _area(self.scan.mentioned) > MAX_CELLS:
+            values = CellValues(book.styles, _shared_texts(archive))
+            self.scan = _scan(archive, name, part, book.styles, values)
+            if not self.scan.has_values:
+                raise _too_large(archive, name, self.scan.mentioned, MAX_CELLS)
         if self.scan.has_values and values is not None and self.scan.extent:
             self.first_row, self.first_column = self.scan.extent.first_row, self.scan.extent.first_column
             self.rows = values.columns(self.scan.extent)
@@ -102,12 +110,20 @@ class _Sheet:
         )
 
 
+def _check_text_count(archive: Archive) -> None:
+    """The bulk reader reserves memory for as many shared texts as the part says it holds, and takes the whole process
+    down where there is not so much; each text takes at least its ``<si/>``."""
+    for said in _UNIQUE.findall(next(archive.stream(_TEXTS))):
+        if not said.isdigit() or len(said) > 12 or int(said) > archive.size(_TEXTS):
+            raise archive.hostile(f"{_TEXTS} says that it holds {said[:20].decode('latin-1')} texts")
+
+
 def _shared_texts(archive: Archive) -> list[str]:
     if _TEXTS not in archive:
         return []
     try:
         return read_shared_texts(archive.stream(_TEXTS))
-    except ExpatError as error:
+    except (ExpatError, LookupError, ValueError) as error:  # LookupError: an encoding that there is not
         raise archive.damaged(f"its shared texts are not well-formed XML ({error})") from error
 
 
@@ -116,17 +132,23 @@ def _scan(archive: Archive, name: str, part: str, styles: Styles, values: CellVa
         lambda: archive.stream(part), styles, lambda what: archive.damaged(f"sheet {name!r}: {what}"), values
     )
     most = MAX_STREAMED_CELLS if scan.has_values else MAX_CELLS
-    if scan.extent and _area(scan.extent) > most:
-        far = address(scan.extent.last_row, scan.extent.last_column)
-        raise FileError(
-            f"the used range {scan.extent} spans {_area(scan.extent):,} cells, more than {most:,}",
-            where=f"{archive.name}, {name}",
-            hint=f"delete the stray cells towards {far}, or split the sheet",
-        )
+    if _area(scan.extent) > most:
+        raise _too_large(archive, name, scan.extent, most)
     return scan
 
 
-def _area(area: CellRange) -> int:
+def _too_large(archive: Archive, name: str, area: CellRange | None, most: int) -> FileError:
+    far = address(area.last_row, area.last_column) if area else ""
+    return FileError(
+        f"the used range {area} spans {_area(area):,} cells, more than {most:,}",
+        where=f"{archive.name}, {name}",
+        hint=f"delete the stray cells towards {far}, or split the sheet",
+    )
+
+
+def _area(area: CellRange | None) -> int:
+    if area is None:
+        return 0
     return (area.last_row - area.first_row + 1) * (area.last_column - area.first_column + 1)
 
 
@@ -136,15 +158,10 @@ def _read_values(source: Source, archive: Archive, sheets: Sequence[_Sheet]) -> 
     if not sheets:
         return
     try:
-        with CalamineWorkbook.from_filelike(io.BytesIO(source.content)) as book:
+        with bulk_workbook(source.content) as book:
             for now in sheets:
                 now.take(book.get_sheet_by_name(now.name))
-    except Exception as error:  # the library raises whatever the file provokes
-        raise _unreadable(archive, now, str(error)) from error
-    except BaseException as error:
-        # a panic of the Rust library is no Exception and cannot be imported by name
-        if type(error).__name__ != "PanicException":
-            raise
+    except BulkError as error:
         raise _unreadable(archive, now, str(error)) from error
 
 

@@ -115,6 +115,28 @@ def test_shared_texts_that_declare_a_small_size_are_refused(tmp_path: Path) -> N
     )
 
 
+@pytest.mark.parametrize("count", ["10000000000", "1e9", "&#57;9999999999", "-1"])
+def test_shared_texts_that_say_they_are_more_than_fit_are_refused(tmp_path: Path, count: str) -> None:
+    texts = f'<sst xmlns="{MAIN}" uniqueCount="{count}"><si><t>x</t></si></sst>'
+    path = by_hand(tmp_path / "a.xlsx", ONE_CELL, parts={"xl/sharedStrings.xml": texts})
+    assert "says that it holds" in message_for(path)
+
+
+@pytest.mark.parametrize(
+    "cell",
+    [
+        '<c r="XFD1048576" s="1"/>',
+        '<c r="XFD1048576" t="s"/>',
+        '<c r="XFD1048576"><v></v></c>',
+        '<c r="XFD1048576" t="str"><v></v></c>',
+        '<c r="XFD1048576" t="b"><v/></c>',
+    ],
+)
+def test_cells_that_hold_nothing_do_not_widen_the_sheet(tmp_path: Path, cell: str) -> None:
+    grid = open_grids(by_hand(tmp_path / "a.xlsx", f'{ONE_CELL}<row r="1048576">{cell}</row>'))[0]
+    assert (grid.last_row, grid.last_column) == (1, 1)
+
+
 def test_declared_total_is_limited(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr(archive_module, "MAX_TOTAL_BYTES", 1000)
     assert "unpacks to more than" in message_for(by_hand(tmp_path / "a.xlsx", ONE_CELL))

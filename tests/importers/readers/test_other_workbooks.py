@@ -12,7 +12,7 @@ import openpyxl
 import pytest
 from python_calamine import CalamineWorkbook
 
-from specflow.importers.readers import Grid, OddKind, open_grids, xls
+from specflow.importers.readers import Grid, OddKind, open_grids
 from tests.importers.readers.workbooks import refused
 
 DATA = Path(__file__).parents[2] / "data" / "readers"
@@ -132,16 +132,6 @@ def test_formulas_that_nobody_calculated_have_no_value() -> None:
         (3, 2, 4, OddKind.NO_VALUE)
     ]
     assert grid.column_floats(3, 2, 5)[1] == [2, 3, 4]
-
-
-def test_a_number_that_two_readers_read_differently_is_refused(monkeypatch: pytest.MonkeyPatch) -> None:
-    ours = xls._Sheet._number
-
-    def wrong(self: Any, row: int, column: int, number: float) -> Any:
-        return 21.0 if (row, column) == (5, 2) else ours(self, row, column, number)
-
-    monkeypatch.setattr(xls._Sheet, "_number", wrong)
-    assert "bench.xls, Gain, C6: the workbook is damaged" in refused(lambda: open_grids(SIBLINGS[1]))
 
 
 def test_protected_workbooks_are_refused(tmp_path: Path) -> None:
