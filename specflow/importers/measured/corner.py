@@ -10,6 +10,8 @@ import re
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
+import numpy as np
+
 from specflow.conditions import find_dimension, is_unlocated_temperature
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.header_cells import HeaderCell
@@ -43,6 +45,16 @@ def find_number_row(grid: Grid, top: int, stop: int, context: Context) -> Number
         found = _number_row(grid, top, row, context)
         if found is not None:
             return found
+    return None
+
+
+def next_number_row(table: FoundTable, context: Context) -> int | None:
+    """The first row below the headers of a table that is a row of numbers over another one."""
+    cells = table.cells(table.headers[0].column)
+    for place in np.flatnonzero(~cells.numeric[: table.stop_row - table.first_row]).tolist():
+        row = table.first_row + place
+        if row < table.grid.last_row and _number_row(table.grid, table.first_row, row, context) is not None:
+            return row
     return None
 
 

@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from dataclasses import replace
 
 from specflow.importers.measured.beside import strips_of
 from specflow.importers.measured.blocks import block_table, end_before_more, find_block, is_far_from
 from specflow.importers.measured.context import Context
-from specflow.importers.measured.corner import find_number_row, table_under
+from specflow.importers.measured.corner import find_number_row, next_number_row, table_under
 from specflow.importers.measured.sideways import find_sideways
 from specflow.importers.measured.tables import FoundTable, cut_table, find_header
 from specflow.importers.readers import CellRange, Grid
@@ -48,8 +48,7 @@ def _next(grid: Grid, top: int, context: Context) -> tuple[FoundTable, int] | No
     reach = grid.last_row + 1 if row is None else row + _ROWS_BELOW + 1
     numbers = find_number_row(grid, top, reach, context)
     if numbers is not None:
-        table = table_under(grid, top, numbers, context)
-        return table, table.stop_row
+        return _ended(lambda cells: table_under(cells, top, numbers, context), grid, context)
     block = find_block(grid, top, grid.last_row + 1) if row is None or grid.is_text else None
     if block is not None and (row is None or block < row or is_far_from(grid, row, block)):
         table = block_table(grid, top, block, context)
@@ -59,5 +58,14 @@ def _next(grid: Grid, top: int, context: Context) -> tuple[FoundTable, int] | No
     last = grid.last_row if block is None else end_before_more(grid, block)
     if last < grid.last_row:
         grid = grid.cut(CellRange(grid.first_row, grid.first_column, last, grid.last_column))
-    table = cut_table(grid, top, row, 1, context.recognises)
-    return table, table.stop_row
+    return _ended(lambda cells: cut_table(cells, top, row, 1, context.recognises), grid, context)
+
+
+def _ended(make: Callable[[Grid], FoundTable], grid: Grid, context: Context) -> tuple[FoundTable, int]:
+    """A table, and the row below it; it ends where numbers are headers of another one."""
+    table = make(grid)
+    row = next_number_row(table, context)
+    if row is None:
+        return table, table.stop_row
+    table = make(grid.cut(CellRange(grid.first_row, grid.first_column, row - 1, grid.last_column)))
+    return table, int(table.rows[-1]) + 1 if len(table.rows) else row
