@@ -7,11 +7,14 @@ from dataclasses import replace
 from itertools import groupby
 from pathlib import Path
 
+from specflow.errors import FileError
+from specflow.importers.bench_sheets import bench_identity, read_bench
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.document import PROVISIONAL_FILE
 from specflow.importers.measured.evidence import ReadTable, read_table
 from specflow.importers.measured.located import GivenMappings, LocatedTable, Mappings, locate_tables
 from specflow.importers.measured.mapping import read_mappings, write_mapping
+from specflow.importers.measured.mapping_parts import LayoutMapping
 from specflow.importers.measured.network import read_network_tables
 from specflow.importers.measured.proposal import Proposal, propose
 from specflow.importers.measured.repeats import without_repeats
@@ -23,7 +26,8 @@ from specflow.importers.measured.result import (
     Role,
 )
 from specflow.importers.readers import FileFingerprint, Grid, GridFile, open_grids, read_source, sheet
-from specflow.importers.readers.touchstone import is_touchstone, read_network
+from specflow.importers.readers.touchstone import has_option_line, is_touchstone, read_network
+from specflow.model.bench_sheet import MARK, BenchIdentity
 from specflow.model.evidence import EvidenceFile, FileKind, HowRead
 from specflow.model.finding import Finding, Severity
 from specflow.model.origin import Origin
@@ -66,9 +70,12 @@ def read_measurements(
     given = GivenMappings(read_mappings(mapping, mapping_name) if mapping else (), mapping_name)
     mappings = Mappings(given, context)
     person = dict(stated or {})
-    if is_touchstone(Path(path).name):
-        return _of_network(path, context, given, person)
+    if is_touchstone(Path(path).name) or has_option_line(Path(path)):
+        return _of_network(path, context, given, person, sheets)
     file = open_grids(path)
+    identity = bench_identity(file)
+    if identity is not None:
+        return _of_test_sheet(file, identity, context, person)
     skipped: list[str] = []
     findings: list[Finding] = []
     located: list[LocatedTable] = []
@@ -90,10 +97,48 @@ def read_measurements(
     return Measurements(document, tuple(tables), tuple(findings), tuple(skipped), proposal)
 
 
+def _of_test_sheet(
+    file: GridFile, identity: BenchIdentity, context: Context, person: Mapping[str, str]
+) -> Measurements:
+    """A test sheet that came back: its identity says all that a mapping would; stored mappings have no part in it."""
+    documents = {**context.snapshot.documents, "mapping": {}}
+    own = Context(replace(context.snapshot, documents=documents), context.dictionary)
+
+    def read(grid: Grid, mapping: LayoutMapping) -> list[MeasuredTable]:
+        mappings = Mappings(GivenMappings((mapping,), MARK), own)
+        located = locate_tables(grid, own, mappings).tables
+        return [_read(one, own, person, include_hidden_rows=False).table for one in located]
+
+    bench = read_bench(file, identity, context.snapshot, read)
+    findings = [finding for table in bench.tables for finding in table.findings]
+    findings += [_of_file(file, note) for note in bench.notes]
+    if not bench.tables:
+        findings.append(_of_file(file, "nothing is filled in on this test sheet", Severity.ERROR))
+    document = _file(file.fingerprint, bench.tables, person)
+    return Measurements(document, tuple(bench.tables), tuple(findings), tuple(bench.skipped))
+
+
+def _of_file(file: GridFile, message: str, severity: Severity = Severity.INFO) -> Finding:
+    return Finding(
+        rule="attach-reading",
+        severity=severity,
+        subject=file.fingerprint.name,
+        subject_kind="file",
+        message=message,
+        origin=Origin(file=file.fingerprint.name),
+    )
+
+
 def _of_network(
-    path: str | Path, context: Context, given: GivenMappings, person: Mapping[str, str]
+    path: str | Path,
+    context: Context,
+    given: GivenMappings,
+    person: Mapping[str, str],
+    sheets: Sequence[str],
 ) -> Measurements:
     """A Touchstone file: it has no cells to be understood, but entries, comments and doubts."""
+    if sheets:
+        raise FileError("a network file has no sheets", where=Path(path).name, hint="leave --sheet out")
     network = read_network(read_source(Path(path)))
     read = read_network_tables(network, context, given, person, IMPORTER_VERSION)
     file = _file(network.fingerprint, read.tables, person)

@@ -27,6 +27,7 @@ from specflow.importers.measured.subject import find_block, item_name, item_note
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.measured.work import TableWork
 from specflow.importers.readers.grid import Grid
+from specflow.importers.readers.touchstone_comments import outside_data
 from specflow.importers.readers.touchstone_network import NetworkFile
 from specflow.model.block import Block
 from specflow.model.columns import Columns, TextColumn
@@ -93,7 +94,7 @@ class _Reading:
         self.context, self.person, self.importer = context, person, importer
         self.mappings = Mappings(given, context)
         self.key = network_layout(network)
-        facts = comment_facts(network.comments)
+        facts = comment_facts(outside_data(network.comments, network.lines))
         found = self.mappings.of_table(self.key, facts.facts, True)
         self.mapping = found.mapping if found else LayoutMapping()
         self.mapping_from = found.source if found else ""
@@ -102,7 +103,7 @@ class _Reading:
         self.said = {**of_network, **said}
         self.settled: SettledNetwork = settle(network, self.said)
         self.network = self.settled.network
-        self.ports = named_ports(network.ports, said, of_network, network.port_names)
+        self.ports = named_ports(network.ports, said, of_network, network.port_modes or network.port_names)
         self.facts: CommentFacts = facts
         self.stated = collect(
             facts.facts, _parted(self.mapping.stated)[1], rest, own_dimensions=context.dimensions

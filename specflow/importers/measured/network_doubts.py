@@ -11,7 +11,7 @@ from specflow.conditions import Comparison, find_dimension
 from specflow.errors import UnitError
 from specflow.importers.measured.result import Question
 from specflow.importers.readers.touchstone_matrix import complex_of
-from specflow.importers.readers.touchstone_network import Doubt, DoubtKind, NetworkFile, PairFormat
+from specflow.importers.readers.touchstone_network import HERTZ, Doubt, DoubtKind, NetworkFile, PairFormat
 from specflow.units import compatible, format_unit, parse_unit
 
 #: What may be said of a network, beside what may be said of any table and "port N".
@@ -65,7 +65,8 @@ def settle(network: NetworkFile, said: Mapping[str, str]) -> SettledNetwork:
         )
         if words
     }
-    settled.questions += [_question(one) for one in network.doubts if one.kind not in settled_kinds]
+    first = {one.kind: one for one in reversed(network.doubts) if one.kind not in settled_kinds}
+    settled.questions += [_question(one) for one in network.doubts if one is first.get(one.kind)]
     return settled
 
 
@@ -141,6 +142,10 @@ def _reordered(network: NetworkFile, named: tuple[tuple[int, int], ...]) -> Netw
 def _settle_axis(settled: SettledNetwork, text: str) -> None:
     name, _, unit = text.strip().partition(" in ")
     if name.strip().casefold() in ("frequency", "freq"):
+        if settled.network.axis_unit not in HERTZ:
+            what = f"the option line names {settled.network.axis_unit}, which is no unit of frequency"
+            remedy = "mend the option line (Hz, kHz, MHz or GHz)"
+            settled.questions.append(Question("x axis", "", what, remedy))
         settled.notes.append("the x axis is frequency, as stated")
         return
     known = find_dimension(name)
@@ -159,6 +164,6 @@ def _settle_axis(settled: SettledNetwork, text: str) -> None:
         return
     settled.axis = Axis(known.name, format_unit(parse_unit(unit)) if unit else "", "stated by the person")
     settled.notes.append(
-        f"the first number of each row is {known.title} in {unit}, as stated, and not the frequency in "
-        f"{settled.network.axis_unit} of the option line"
+        f"the first number of each row is {known.title} in {unit}, as stated; the option line says "
+        f"{settled.network.axis_unit}"
     )

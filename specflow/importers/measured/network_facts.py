@@ -19,6 +19,7 @@ from specflow.importers.measured.result import Question
 from specflow.importers.readers.touchstone_network import Comment
 
 _PAIR = re.compile(r"^\s*(?:VAR\s+)?(?P<key>[A-Za-z][^:=]{0,58}?)\s*[:=]\s*(?P<value>.+)$", re.DOTALL)
+_ASSIGNED = re.compile(r"([A-Za-z_]\w*)\s*=\s*([+-]?\d+(?:\.\d+)?\s*[A-Za-zµΩ°%]+)")
 _TEMPERATURE = re.compile(
     r"(?P<sign>[+\-−–]?)(?P<gap>\s*)(?P<digits>\d+(?:\.\d+)?)\s*"
     r"(?:°\s*C\b|℃|deg(?:ree)?s?\.?\s*C(?:elsius)?\b|(?<=\d)\s?C\b)",
@@ -52,6 +53,7 @@ def comment_facts(comments: Sequence[Comment]) -> CommentFacts:
     unused: list[str] = []
     for comment in comments:
         found = list(_sentences(comment, questions))
+        found += _several(comment)
         pair = _PAIR.match(comment.text)
         if pair and not found and not _OF_THE_READER.search(comment.text):
             fact = _of_pair(pair["key"], pair["value"], comment.line)
@@ -62,6 +64,15 @@ def comment_facts(comments: Sequence[Comment]) -> CommentFacts:
         known = {(one.key.casefold(), one.value) for one in facts}
         facts += [one for one in found if (one.key.casefold(), one.value) not in known]
     return CommentFacts(tuple(facts), tuple(questions), tuple(unused))
+
+
+def _several(comment: Comment) -> list[Fact]:
+    """What a comment states in several assignments: Vdd = 3.3 V, Idd = 60 mA; one alone is a pair like any other."""
+    assigned = _ASSIGNED.findall(comment.text)
+    if len(assigned) < 2:
+        return []
+    facts = (_of_pair(key, value, comment.line) for key, value in assigned)
+    return [fact for fact in facts if fact is not None]
 
 
 def _of_pair(key: str, value: str, line: int) -> Fact | None:

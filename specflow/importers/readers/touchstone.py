@@ -25,6 +25,7 @@ from specflow.importers.readers.touchstone_matrix import (
     scattering_of,
 )
 from specflow.importers.readers.touchstone_network import (
+    HERTZ,
     Complexes,
     Doubt,
     DoubtKind,
@@ -49,6 +50,10 @@ from specflow.model.budget_line import MOST_TOUCHSTONE_POINTS, TouchstoneTrace
 
 DEFAULT_OHM = 50.0
 
+_HEAD_BYTES = 16384
+_WHOLE_OPTION = re.compile(
+    r"#\s*(?=.*\b[kMG]?Hz\b)(?=.*\b[SYZGH]\b)(?=.*\b(?:DB|MA|RI)\b)[\w\s.+-]*(?:!.*)?$", re.IGNORECASE
+)
 _ENDING = re.compile(r"\.s(?P<ports>\d{1,4})p", re.IGNORECASE)
 
 
@@ -56,6 +61,22 @@ def is_touchstone(name: str) -> bool:
     """Whether a file goes by the ending of a Touchstone file: .s2p, .S10P, .ts."""
     suffix = Path(name).suffix
     return _ENDING.fullmatch(suffix) is not None or suffix.casefold() == ".ts"
+
+
+def has_option_line(path: Path) -> bool:
+    """Whether a text file with another ending is a Touchstone file: its first line that is no comment is a whole option
+    line, with unit, parameter and format.
+    """
+    try:
+        with path.open("rb") as stream:
+            head = stream.read(_HEAD_BYTES)
+    except OSError:
+        return False  # whoever reads it will say why it cannot be read
+    for line in head.decode("latin-1").splitlines():
+        text = line.strip().lstrip("\ufeffï»¿")
+        if text and not text.startswith("!"):
+            return _WHOLE_OPTION.match(text) is not None
+    return False
 
 
 def ports_by_ending(name: str) -> int | None:
@@ -251,9 +272,17 @@ def _with_comments(
         network,
         port_names=told.port_names,
         impedances=told.impedances,
-        doubts=(*told.doubts, *_negative_magnitudes(network)),
+        doubts=(*_other_unit(network, option), *told.doubts, *_negative_magnitudes(network)),
         remarks=tuple(sorted(remarks, key=lambda one: one.line)),
     )
+
+
+def _other_unit(network: NetworkFile, option: Option) -> list[Doubt]:
+    """An option line with the unit of a level or a voltage: the rows are over that, and not over frequency."""
+    if network.axis_unit in HERTZ:
+        return []
+    what = f"the option line names {network.axis_unit}, which is no unit of frequency"
+    return [Doubt(DoubtKind.X_AXIS, option.line, what)]
 
 
 def _negative_magnitudes(network: NetworkFile) -> list[Doubt]:

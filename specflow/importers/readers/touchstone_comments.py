@@ -83,12 +83,19 @@ class Told:
 
 
 def read_comments(comments: Sequence[Comment], shape: Shape) -> Told:
-    """Read the comments of a file."""
-    doubts = [*_column_doubts(comments, shape), *_axis_doubts(comments, shape)]
-    remarks = list(_other_entry(comments, shape))
+    """Read the comments of a file; those between frequencies are looked through for impedances only."""
+    outside = outside_data(comments, shape.lines)
+    doubts = [*_column_doubts(outside, shape), *_axis_doubts(outside, shape)]
+    remarks = [*_other_entry(outside, shape), *_ports_of_analyser(outside, shape)]
     impedances = _impedances(comments, shape, remarks)
-    names = _port_names(comments, shape.ports)
+    names = _port_names(outside, shape.ports)
     return Told(tuple(doubts), tuple(remarks), names, impedances)
+
+
+def outside_data(comments: Sequence[Comment], lines: NDArray[np.int64]) -> list[Comment]:
+    """Return the comments above the first and below the last frequency: simulators put thousands between."""
+    first, last = int(lines[0]), int(lines[-1])
+    return [one for one in comments if (one.line < first or one.line > last) and not one.beside_data]
 
 
 def mentions(text: str, parameter: str) -> list[tuple[int, int]]:
@@ -147,6 +154,22 @@ def _other_entry(comments: Sequence[Comment], shape: Shape) -> Iterator[Remark]:
             says = _names(found[:1], shape.parameter)
             yield Remark(
                 comment.line, f"the comment calls the one entry {says}; it is kept as {shape.parameter}11"
+            )
+
+
+def _ports_of_analyser(comments: Sequence[Comment], shape: Shape) -> Iterator[Remark]:
+    """Say which ports of the analyser those of the file are, where comments name the entries by them: S33 S13 ..."""
+    for run in _runs(comments):
+        named = [(one, found) for one in run if (found := mentions(one.text, shape.parameter))]
+        listed = list(dict.fromkeys(entry for _, found in named for entry in found))
+        numbers = [i for i, j in listed if i == j]
+        wanted = [(i, j) for i, j in shape.order]
+        if len(numbers) != shape.ports or numbers == list(range(1, shape.ports + 1)) or shape.ports == 1:
+            continue
+        if listed == [(numbers[i], numbers[j]) for i, j in wanted]:
+            shown = ", ".join(f"port {place} is {number}" for place, number in enumerate(numbers, 1))
+            yield Remark(
+                named[0][0].line, f"by the comments, of the file and of the analyser: {shown}", warns=True
             )
 
 
@@ -209,7 +232,7 @@ def _impedances(comments: Sequence[Comment], shape: Shape, remarks: list[Remark]
     wanted = shape.ports
     usable = [(line, block) for line, block in blocks if len(block) in (wanted, 2 * wanted)]
     if not usable:
-        remarks += _single_impedances(comments, shape)
+        remarks += _single_impedances(outside_data(comments, shape.lines), shape)
         return None
     values = np.array([_complex_list(block, wanted) for _, block in usable], np.complex128)
     line = usable[0][0]

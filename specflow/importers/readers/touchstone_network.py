@@ -179,8 +179,8 @@ class NetworkFile:
 
     @property
     def frequency_hz(self) -> Floats:
-        """The axis in hertz, (n,)."""
-        return self.axis * HERTZ[self.axis_unit]
+        """The axis in hertz, (n,); NaN where the option line names another unit than one of frequency."""
+        return self.axis * HERTZ.get(self.axis_unit, np.nan)
 
     @property
     def lines(self) -> NDArray[np.int64]:

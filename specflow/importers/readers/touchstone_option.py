@@ -7,7 +7,9 @@ from dataclasses import dataclass
 from specflow.importers.readers.touchstone_lines import OptionText, refusal
 from specflow.importers.readers.touchstone_network import HERTZ, PairFormat
 
-_UNITS = {unit.casefold(): unit for unit in HERTZ}
+#: Units that files with another x axis have in the place of a frequency's: the axis is then a doubt.
+OTHER_UNITS = {"dbm": "dBm", "dbw": "dBW", "v": "V", "degc": "°C"}
+_UNITS = {unit.casefold(): unit for unit in HERTZ} | OTHER_UNITS
 _FORMATS = {one.value.casefold(): one for one in PairFormat}
 _PARAMETERS = ("s", "y", "z", "g", "h")
 

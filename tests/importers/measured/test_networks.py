@@ -9,6 +9,7 @@ from typing import Any
 import numpy as np
 import pytest
 
+from specflow.errors import FileError
 from specflow.importers.measured.network_facts import comment_facts
 from specflow.importers.measurements import MeasuredTable, Measurements, read_measurements
 from specflow.importers.readers.touchstone_network import Comment
@@ -192,6 +193,50 @@ def test_an_x_axis_of_power_is_asked_and_becomes_the_condition(tmp_path: Path) -
     )
 
 
+def test_an_option_line_with_a_unit_of_power_is_asked(tmp_path: Path) -> None:
+    path = tmp_path / "a.s2p"
+    path.write_text(f"# dBm S MA R 50\n{ROWS}")
+    [question] = raw(path).questions
+    assert (question.header, question.cell) == (
+        "x axis",
+        "line 1",
+    ) and "no unit of frequency" in question.what
+    assert raw(path, **{"x axis": "frequency"}).questions
+    table = raw(path, **{"x axis": "input_level in dBm"})
+    assert table.columns is not None and list(table.columns.conditions.numeric) == ["input_level"]
+
+
+def test_a_network_with_the_ending_of_a_text_file_is_known_by_its_option_line(tmp_path: Path) -> None:
+    path = tmp_path / "amp.txt"
+    path.write_text(f"! by an analyser\n# GHz S MA R 50\n{ROWS}")
+    assert raw(path).values == 24
+    with pytest.raises(FileError, match="has no sheets"):
+        read_measurements(path, a_snapshot(a_block()), load_dictionary(), sheets=["one"])
+    table = tmp_path / "gain.csv"
+    table.write_text("# S parameters in MHz\nItem,f (GHz),Gain (dB)\nLNA-1,27.5,20.1\n")
+    assert [one.quantity.parameter for one in raw(table).document.values] == ["gain"]  # type: ignore[union-attr]
+
+
+def test_ports_that_comments_name_input_and_output_are_taken(tmp_path: Path) -> None:
+    path = tmp_path / "a.s2p"
+    path.write_text(f"! PORT 1 = RF IN, PORT 2 = RF OUT\n# GHz S MA R 50\n{ROWS}")
+    table = raw(path, wanted("gain"))
+    assert planned(table) == [("gain", "gain", "S21")]
+    assert {one.header: one.reason for one in table.recognised}["port 1"] == "a comment of the file"
+
+
+def test_modes_are_the_names_of_ports(tmp_path: Path) -> None:
+    path = tmp_path / "a.s4p"
+    rows = "\n".join(" ".join(f"{10 * i + j} 0" for j in range(1, 5)) for i in range(1, 5))
+    path.write_text(
+        "[Version] 2.1\n# MHz S MA\n[Number of Ports] 4\n[Number of Frequencies] 1\n"
+        f"[Mixed-Mode Order] D1,2 D3,4 C1,2 C3,4\n[Network Data]\n5 {rows}\n[End]\n"
+    )
+    table = raw(path, wanted("gain", "D1,2 to D3,4"))
+    assert table.document is not None and table.document.values[0].name == "S D1,2 D1,2 magnitude"
+    assert planned(table) == [("gain", "gain", "S D3,4 D1,2")]
+
+
 def test_another_format_is_asked_and_taken_as_told(tmp_path: Path) -> None:
     path = tmp_path / "a.s1p"
     path.write_text("# GHz S MA R 50\n1 -20 0\n2 -10 0\n")
@@ -228,6 +273,7 @@ def test_impedances_in_comments_that_are_not_the_reference_are_a_finding() -> No
         ("Date: 03/04/2012", {}),
         ("VAR V_in= 0.838700", {}),
         ("VAR Vdd= 3.3 V", {"Vdd": "3.3 V"}),
+        ("Vdd = 3.3V, Idd=60mA, 25 deg C", {"Vdd": "3.3V", "temperature": "25 °C"}),
         ("Port[1] = 1:1", {}),
         ("Freq S11:SOLT2(ON) S21:SOLT2(ON)", {}),
     ],

@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import json
+import random
+from collections import Counter
 from collections.abc import Callable
 from pathlib import Path
 from typing import Any
@@ -423,12 +425,50 @@ def test_a_transposed_list_of_a_three_port_is_a_doubt(tmp_path: Path) -> None:
     assert doubts(tmp_path, f"# GHz S RI R 50\n{plain}{rows}", "a.s3p") == []
 
 
+def test_ports_of_the_analyser_are_said(tmp_path: Path) -> None:
+    network = read_text(tmp_path, f"! S33 S13 S31 S11\n{TWO}1 {FULL}\n", "a.s2p")
+    [said] = [one for one in network.remarks if one.warns]
+    assert "port 1 is 3, port 2 is 1" in said.what and not network.doubts
+
+
 def test_an_impedance_in_a_comment_that_is_not_the_reference_is_said(tmp_path: Path) -> None:
     network = read_text(tmp_path, "! Z0 = 75 Ohm\n# GHz S RI R 50\n1 1 0\n", "a.s1p")
     [said] = [one for one in network.remarks if one.warns]
     assert "75 ohm" in said.what and "R 50" in said.what and said.line == 1
     same = read_text(tmp_path, "! Z0 = 75 Ohm\n# GHz S RI R 75\n1 1 0\n", "a.s1p")
     assert not same.remarks
+
+
+@pytest.mark.parametrize(
+    ("name", "lines"), [("transistor_noise.s2p", 95), ("splitter_25c.S3P", 69), ("ten_port_sim.s10p", 58)]
+)
+def test_damaged_files_are_read_or_refused_and_never_worse(name: str, lines: int, tmp_path: Path) -> None:
+    """Bytes changed, doubled, left out or cut off: a network or one clear refusal, within the time of a bare read."""
+    draw = random.Random(name)
+    good = b"\n".join((DATA / name).read_bytes().split(b"\n")[:lines])
+    outcomes: Counter[str] = Counter()
+    for _ in range(1500):
+        content = bytearray(good)
+        for _ in range(draw.randint(1, 4)):
+            place = draw.randrange(len(content))
+            match draw.randrange(4):
+                case 0:
+                    content[place] = draw.choice(b"0 \t\n\r!#[]-+.eE,;\x00\xff\xb0nS9")
+                case 1:
+                    content[place:place] = content[place : place + draw.randint(1, 40)]
+                case 2:
+                    del content[place : place + draw.randint(1, 40)]
+                case _:
+                    del content[place:]
+            content = content or bytearray(b"#")
+        try:
+            network = read_text(tmp_path, bytes(content), name)
+            assert network.s.shape == (len(network.axis), network.ports, network.ports)
+            outcomes["read"] += 1
+        except FileError as error:
+            assert error.where and error.hint
+            outcomes["refused"] += 1
+    assert outcomes["read"] > 50 and outcomes["refused"] > 300, outcomes
 
 
 @pytest.mark.parametrize(
