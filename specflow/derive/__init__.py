@@ -4,8 +4,8 @@ What may live here:
 
 - ``LAWS`` the one list of all laws, with what each needs, its settings, formula and source
 - ``law`` an entry of the list and what a law gives; ``samples`` what it is handed
-- ``said`` settings, ranges and choices of rows, read from what a person says; ``grouping`` rows that belong together;
-  ``coverage`` whether they cover the range; ``table`` a law applied to stored tables
+- ``said`` settings, ranges and choices of rows, read from what a person says; ``joining`` the columns it reads side
+  by side; ``coverage`` whether they cover the range; ``table`` a law applied to stored tables
 - every other module: the laws of one family (over a range, of a pattern, of a power sweep ...)
 
 A law is a pure function on float64 arrays. It refuses what it cannot do: a range that is not covered is refused with

@@ -8,9 +8,9 @@ from dataclasses import dataclass, field
 import numpy as np
 from numpy.typing import NDArray
 
+from specflow.conditions.groups import grouped_rows
 from specflow.conditions.words import difference_words, range_words, value_words
 from specflow.derive.coverage import covered_rows
-from specflow.derive.grouping import grouped_rows
 from specflow.derive.joining import Joined, joined
 from specflow.derive.law import Law, Outcome
 from specflow.derive.said import SaidRange, read_over, typed_settings

@@ -11,12 +11,20 @@ from collections.abc import Callable, Iterator, Sequence
 from html import escape
 from itertools import pairwise
 
-from specflow.model.picture import ContributionBars, Distribution, LevelDiagram, Mark, Picture, Series
+from specflow.exporters.svg_parts import GOOD, INK, QUIET, WIDTH, stroke, text, ticks
+from specflow.exporters.svg_trace import trace_parts
+from specflow.model.picture import (
+    ContributionBars,
+    Distribution,
+    LevelDiagram,
+    Mark,
+    Picture,
+    Series,
+    TracePicture,
+)
 
-INK, QUIET, LINE = "#1d2733", "#5d6b76", "#d5dde4"
 COLOURS = {"signal": "#22577a", "noise": "#8a5a2b", "bound": "#6b7780"}
-GOOD, BAD = "#7fa99b", "#c0583c"
-WIDTH = 860
+BAD = "#c0583c"
 _FONT = 'font-family="system-ui, sans-serif" font-size="12"'
 _CHARACTER = 6.4  # mean width in px of a character at that size
 _HALO = ' stroke="#fff" stroke-width="3" paint-order="stroke"'  # text that crosses a line stays readable
@@ -33,30 +41,14 @@ def svg(picture: Picture, name: str) -> str:
             height, parts = _bars(picture)
         case Distribution():
             height, parts = _distribution(picture)
+        case TracePicture():
+            height, parts = trace_parts(picture)
     return (
         f'<svg xmlns="http://www.w3.org/2000/svg" role="img" viewBox="0 0 {WIDTH} {height}" width="{WIDTH}" '
         f'height="{height}" {_FONT} fill="{INK}" aria-labelledby="{name}-title {name}-desc">'
         f'<title id="{name}-title">{escape(picture.title)}</title>'
         f'<desc id="{name}-desc">{escape(picture.words)}</desc>{"".join(parts)}</svg>'
     )
-
-
-def _text(x: float, y: float, words: str, anchor: str = "start", fill: str = INK, more: str = "") -> str:
-    return f'<text x="{x:.1f}" y="{y:.1f}" text-anchor="{anchor}" fill="{fill}"{more}>{escape(words)}</text>'
-
-
-def _stroke(x1: float, y1: float, x2: float, y2: float, colour: str = LINE, more: str = "") -> str:
-    return f'<line x1="{x1:.1f}" y1="{y1:.1f}" x2="{x2:.1f}" y2="{y2:.1f}" stroke="{colour}"{more}/>'
-
-
-def ticks(low: float, high: float, most: int = 8) -> list[float]:
-    """Return round values from ``low`` to ``high``: steps of 1, 2 or 5 times a power of ten, at most ``most``."""
-    rough = (high - low) / most
-    power = 10.0 ** math.floor(math.log10(rough))
-    step = next(power * factor for factor in (1, 2, 5, 10) if power * factor >= rough * (1 - 1e-9))
-    first = math.ceil(low / step - 1e-9)
-    last = math.floor(high / step + 1e-9)
-    return [at * step for at in range(first, last + 1)]
 
 
 # Levels
@@ -84,10 +76,10 @@ def _levels(picture: LevelDiagram) -> tuple[int, list[str]]:
     below = 30 + (min(longest, 28) * _CHARACTER * math.sin(math.radians(turn)) if slanted else 12)
     parts = [_legend(picture)]
     for value in ticks(low, high):
-        parts.append(_stroke(_LEFT, y(value), WIDTH - _RIGHT, y(value)))
-        parts.append(_text(_LEFT - 8, y(value) + 4, f"{value:g}", "end", QUIET))
+        parts.append(stroke(_LEFT, y(value), WIDTH - _RIGHT, y(value)))
+        parts.append(text(_LEFT - 8, y(value) + 4, f"{value:g}", "end", QUIET))
     for place, name in enumerate(picture.stations):
-        parts.append(_stroke(x(place), _TOP, x(place), _TOP + _PLOT + 4))
+        parts.append(stroke(x(place), _TOP, x(place), _TOP + _PLOT + 4))
         parts.append(_station_name(x(place), _TOP + _PLOT + 18, name, turn))
     for one in reversed(picture.series):
         parts.extend(_series(one, x, y, every=max(1, math.ceil(_NUMBER / across))))
@@ -97,17 +89,17 @@ def _levels(picture: LevelDiagram) -> tuple[int, list[str]]:
 def _station_name(x: float, y: float, name: str, turn: int) -> str:
     shown = name if len(name) <= 28 else name[:27] + "…"
     if not turn:
-        return _text(x, y, shown, "middle")
-    return _text(x + 4, y, shown, "end", INK, f' transform="rotate(-{turn} {x + 4:.1f} {y:.1f})"')
+        return text(x, y, shown, "middle")
+    return text(x + 4, y, shown, "end", INK, f' transform="rotate(-{turn} {x + 4:.1f} {y:.1f})"')
 
 
 def _legend(picture: LevelDiagram) -> str:
-    parts = [_text(_LEFT - 8, 16, picture.unit, "end", QUIET)]
+    parts = [text(_LEFT - 8, 16, picture.unit, "end", QUIET)]
     x = float(_LEFT)
     for one in picture.series:
-        parts.append(_stroke(x, 12, x + 26, 12, COLOURS[one.look], _dashes(one)))
+        parts.append(stroke(x, 12, x + 26, 12, COLOURS[one.look], _dashes(one)))
         parts.append(_mark(one, x + 13, 12))
-        parts.append(_text(x + 32, 16, one.name, "start", COLOURS[one.look]))
+        parts.append(text(x + 32, 16, one.name, "start", COLOURS[one.look]))
         x += 58 + len(one.name) * _CHARACTER
     return "".join(parts)
 
@@ -134,7 +126,7 @@ def _series(one: Series, x: _Place, y: _Value, *, every: int) -> Iterator[str]:
     known = [(place, value) for place, value in enumerate(one.values) if value is not None]
     for (place, value), (after, next_value) in pairwise(known):
         if after == place + 1 and one.look != "bound":
-            yield _stroke(x(place), y(value), x(after), y(next_value), COLOURS[one.look], _dashes(one))
+            yield stroke(x(place), y(value), x(after), y(next_value), COLOURS[one.look], _dashes(one))
     for place, value in known:
         yield _mark(one, x(place), y(value))
         if every == 1:
@@ -144,7 +136,7 @@ def _series(one: Series, x: _Place, y: _Value, *, every: int) -> Iterator[str]:
         ):
             up = 17 if one.look == "noise" else -8
             anchor = "middle" if place else "start"
-            yield _text(x(place), y(value) + up, one.texts[place], anchor, COLOURS[one.look], _HALO)
+            yield text(x(place), y(value) + up, one.texts[place], anchor, COLOURS[one.look], _HALO)
 
 
 def _label(one: Series, place: int, x: _Place, y: _Value) -> str:
@@ -161,7 +153,7 @@ def _label(one: Series, place: int, x: _Place, y: _Value) -> str:
     if after is None and place == len(one.values) - 1:
         anchor = "end"
     aside = -6 if anchor == "end" else 6
-    return _text(at + aside, height + (17 if below else -8), one.texts[place], anchor, colour, _HALO)
+    return text(at + aside, height + (17 if below else -8), one.texts[place], anchor, colour, _HALO)
 
 
 # Contributions
@@ -179,12 +171,12 @@ def _bars(picture: ContributionBars) -> tuple[int, list[str]]:
     for row, (name, bar) in enumerate(zip(names, picture.bars, strict=True)):
         y = row * _ROW + 6
         length = max(bar.part, 0.0) / most * room
-        parts.append(_text(left - 8, y + 13, name, "end"))
+        parts.append(text(left - 8, y + 13, name, "end"))
         parts.append(
             f'<rect x="{left:.1f}" y="{y}" width="{length:.1f}" height="{_ROW - 7}" fill="{COLOURS["signal"]}"/>'
         )
-        parts.append(_text(left + length + 6, y + 13, bar.text, "start"))
-    parts.append(_stroke(left, 2, left, len(names) * _ROW + 4, QUIET))
+        parts.append(text(left + length + 6, y + 13, bar.text, "start"))
+    parts.append(stroke(left, 2, left, len(names) * _ROW + 4, QUIET))
     return len(names) * _ROW + 12, parts
 
 
@@ -205,13 +197,11 @@ def _distribution(picture: Distribution) -> tuple[int, list[str]]:
         return _SIDE + (value - low) / (high - low) * (WIDTH - 2 * _SIDE)
 
     parts = list(_columns(picture, x, bottom))
-    parts.append(_stroke(_SIDE, bottom, WIDTH - _SIDE, bottom, QUIET))
+    parts.append(stroke(_SIDE, bottom, WIDTH - _SIDE, bottom, QUIET))
     for value in ticks(low, high, 10):
-        parts.append(_stroke(x(value), bottom, x(value), bottom + 5, QUIET))
-        parts.append(_text(x(value), bottom + 19, f"{value:g}", "middle", QUIET))
-    parts.append(
-        _text(WIDTH / 2, bottom + 38, f"worst margin of a specimen, {picture.unit}", "middle", QUIET)
-    )
+        parts.append(stroke(x(value), bottom, x(value), bottom + 5, QUIET))
+        parts.append(text(x(value), bottom + 19, f"{value:g}", "middle", QUIET))
+    parts.append(text(WIDTH / 2, bottom + 38, f"worst margin of a specimen, {picture.unit}", "middle", QUIET))
     parts.extend(_limit(picture, x, bottom))
     for row, mark in enumerate(sorted(picture.marks, key=lambda one: one.at)):
         parts.extend(_marked(mark, x(mark.at), 32 + 16 * row, bottom))
@@ -221,13 +211,13 @@ def _distribution(picture: Distribution) -> tuple[int, list[str]]:
 def _limit(picture: Distribution, x: _Value, bottom: float) -> Sequence[str]:
     if picture.shows_limit:
         return [
-            _stroke(x(0.0), 18, x(0.0), bottom, BAD, ' stroke-width="2"'),
+            stroke(x(0.0), 18, x(0.0), bottom, BAD, ' stroke-width="2"'),
             _beside(x(0.0), 14, "limit", BAD),
         ]
     if picture.edges[0] > 0:
-        return [_text(_SIDE, 14, f"← limit, {picture.edges[0]:.3g} {picture.unit} away", "start", BAD)]
+        return [text(_SIDE, 14, f"← limit, {picture.edges[0]:.3g} {picture.unit} away", "start", BAD)]
     far = f"limit, {-picture.edges[-1]:.3g} {picture.unit} away →"
-    return [_text(WIDTH - _SIDE, 14, far, "end", BAD)]
+    return [text(WIDTH - _SIDE, 14, far, "end", BAD)]
 
 
 def _columns(picture: Distribution, x: _Value, bottom: float) -> Iterator[str]:
@@ -246,7 +236,7 @@ def _columns(picture: Distribution, x: _Value, bottom: float) -> Iterator[str]:
 
 def _marked(mark: Mark, x: float, y: float, bottom: float) -> Sequence[str]:
     return [
-        _stroke(x, y - 8, x, bottom, QUIET, ' stroke-dasharray="3 3"'),
+        stroke(x, y - 8, x, bottom, QUIET, ' stroke-dasharray="3 3"'),
         _beside(x, y, mark.text, INK),
     ]
 
@@ -254,4 +244,4 @@ def _marked(mark: Mark, x: float, y: float, bottom: float) -> Sequence[str]:
 def _beside(x: float, y: float, words: str, fill: str) -> str:
     """Write words beside a line, on the side where there is room."""
     fits = x + 6 + len(words) * _CHARACTER < WIDTH
-    return _text(x + 5, y, words, "start", fill) if fits else _text(x - 5, y, words, "end", fill)
+    return text(x + 5, y, words, "start", fill) if fits else text(x - 5, y, words, "end", fill)

@@ -105,4 +105,57 @@ class Distribution(Document):
         return (low, high) if high > low else (low - 1.0, high + 1.0)
 
 
-Picture = Annotated[LevelDiagram | ContributionBars | Distribution, Field(discriminator="kind")]
+class TraceLine(Document):
+    """Readings along an axis: ``x`` rises, one ``y`` for each. A bound of a limit is drawn as one, too."""
+
+    name: str
+    x: tuple[float, ...]
+    y: tuple[float, ...]
+    look: Literal["reading", "bound"] = "reading"
+
+    @model_validator(mode="after")
+    def _one_value_a_place(self) -> Self:
+        if len(self.x) != len(self.y) or not self.x:
+            raise ValueError(f"{self.name} needs one value for each place")
+        return self
+
+
+class TraceMark(Document):
+    """A place of a trace with what was found there."""
+
+    x: float
+    y: float
+    text: str
+
+
+class TracePicture(Document):
+    """Raw readings along one axis, with the limit where it is one on them, and what was derived from them."""
+
+    kind: Literal["trace"] = "trace"
+    title: str
+    words: str
+    axis: str
+    axis_unit: str
+    unit: str
+    lines: tuple[TraceLine, ...] = Field(min_length=1)
+    marks: tuple[TraceMark, ...] = ()
+
+    @property
+    def across(self) -> tuple[float, float]:
+        """The ends of the axis, apart from each other."""
+        return _apart([place for line in self.lines for place in line.x])
+
+    @property
+    def span(self) -> tuple[float, float]:
+        """The least and the greatest value, apart from each other."""
+        return _apart([value for line in self.lines for value in line.y])
+
+
+def _apart(values: list[float]) -> tuple[float, float]:
+    low, high = min(values), max(values)
+    return (low, high) if high > low else (low - 1.0, high + 1.0)
+
+
+Picture = Annotated[
+    LevelDiagram | ContributionBars | Distribution | TracePicture, Field(discriminator="kind")
+]

@@ -24,6 +24,7 @@ from specflow.reports.origins import OriginFinder
 from specflow.reports.predicted import predicted_facts, predicted_pictures
 from specflow.reports.proof_grid import proof_grids
 from specflow.reports.trace import requirement_trail
+from specflow.reports.trace_pictures import trace_pictures
 
 POINTS_IN_TRAIL = 6  # the proof grid has every point; the trail shows those that decide
 
@@ -64,6 +65,7 @@ def requirement_card(
         findings=None if findings is None else findings_about(findings, requirement.id),
         cautions=(EXPOSURE_CAUTION,) if is_radiated(requirement, dictionary) else (),
         pictures=predicted_pictures(requirement, outcomes, titles(dictionary)),
+        traces=trace_pictures(requirement, status, snapshot, finder),
     )
 
 

@@ -5,8 +5,16 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 
-from specflow.model.picture import ContributionBars, Distribution, LevelDiagram, Picture, Series
+from specflow.model.picture import (
+    ContributionBars,
+    Distribution,
+    LevelDiagram,
+    Picture,
+    Series,
+    TracePicture,
+)
 from specflow.reports.figures import rounded
+from specflow.reports.trace_text import trace_lines
 
 SIGNS = {"signal": "●", "noise": "○", "bound": "▕"}
 _EIGHTHS = " ▏▎▍▌▋▊▉█"
@@ -39,6 +47,8 @@ def picture_lines(picture: Picture, width: int = 78) -> list[str]:
             drawn = bar_lines(picture, width)
         case Distribution():
             drawn = distribution_lines(picture, width)
+        case TracePicture():
+            drawn = trace_lines(picture, width)
     return [picture.title, *drawn]
 
 

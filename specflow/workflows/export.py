@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from datetime import date
 from pathlib import Path
@@ -11,18 +11,21 @@ from pathlib import Path
 from specflow.errors import FileError, SpecflowError
 from specflow.exporters import WRITERS, writer
 from specflow.model.budget import Budget
-from specflow.model.report import Report, ReportTable
+from specflow.model.report import Report, ReportPicture, ReportTable
 from specflow.reports.about import about_table, cautions
 from specflow.reports.evidence import evidence_table
 from specflow.reports.findings import by_subject, findings_table
 from specflow.reports.matrix import compliance_matrix
+from specflow.reports.origins import OriginFinder
 from specflow.reports.points import POINT_COLUMNS, points_count, points_table
 from specflow.reports.status import in_tree_order, summary_table
+from specflow.reports.trace_pictures import trace_pictures
 from specflow.store import ProjectStore
 from specflow.workflows.budget_parts import BudgetParts, budget_parts
 from specflow.workflows.evaluate_project import Evaluation, evaluate_project
 
 TABLES = ("summary", "matrix", "points", "evidence", "findings", "budgets", "about")
+MOST_TRACES_ON_A_PAGE = 40  # drawings of raw data; the rest is in the terminal, on the card of its requirement
 MOST_POINTS_ON_A_PAGE = 20_000  # a browser lays out no more rows than this in reasonable time
 
 
@@ -82,9 +85,23 @@ def compliance_report(evaluation: Evaluation, tables: Sequence[str] = TABLES, fo
         subtitle=f"judged as of {results.as_of}, project revision {snapshot.revision}",
         cautions=cautions(snapshot, evaluation.dictionary),
         tables=tuple(found),
-        pictures=budgets.pictures,
+        pictures=(*budgets.pictures, *(_traces(evaluation, tables) if format == "html" else ())),
         sheets=budgets.sheets,
     )
+
+
+def _traces(evaluation: Evaluation, tables: Sequence[str]) -> Iterator[ReportPicture]:
+    """Give the raw data behind requirements, above the table of evidence."""
+    if "evidence" not in tables:
+        return
+    finder = OriginFinder(evaluation.snapshot)
+    left = MOST_TRACES_ON_A_PAGE
+    for requirement in in_tree_order(evaluation.snapshot)[0]:
+        status = evaluation.results.of(requirement.id)
+        for picture in trace_pictures(requirement, status, evaluation.snapshot, finder)[:left]:
+            left -= 1
+            title = f"{requirement.id}: {picture.title}"
+            yield ReportPicture(table="evidence", picture=picture.model_copy(update={"title": title}))
 
 
 def _table(name: str, evaluation: Evaluation, *, for_page: bool) -> ReportTable:

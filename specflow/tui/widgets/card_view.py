@@ -119,6 +119,10 @@ def _parts(card: Card) -> Iterator[Widget]:
         yield Rule("predicted by its budgets")
         for picture in card.pictures:
             yield PictureView(picture)
+    if card.traces:
+        yield Rule("raw data")
+        for picture in card.traces:
+            yield PictureView(picture)
     yield Rule("trail")
     yield TrailView(card.trail)
     yield from _findings(card.findings)

@@ -1,4 +1,4 @@
-"""A picture of a budget, drawn with text: levels along the chain, contributions, distribution against the limit."""
+"""A picture drawn with text: levels along a chain, contributions, a distribution against the limit, raw readings."""
 
 from __future__ import annotations
 
@@ -16,6 +16,8 @@ _STYLES = {
     SIGNS["noise"]: "$warning",
     SIGNS["bound"]: "$secondary",
     "┼": "bold $error",
+    "╌": "$error",
+    "◆": "bold $warning",
 }
 _BLOCKS = frozenset("▏▎▍▌▋▊▉█▁▂▃▄▅▆▇")
 

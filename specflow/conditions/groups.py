@@ -1,4 +1,4 @@
-"""Rows that belong together: those of one item under the same conditions, but for the axes that a law runs over."""
+"""Rows that belong together: those of one item under the same conditions, but for the axes that are looked along."""
 
 from __future__ import annotations
 
@@ -31,8 +31,3 @@ def grouped_rows(
     _, first, group = np.unique(np.stack(keys, axis=1), axis=0, return_index=True, return_inverse=True)
     group = group.reshape(-1)
     return [rows[group == place] for place in np.argsort(first, kind="stable")]
-
-
-def chosen_rows(conditions: Columns, taken: Rows | None, size: int) -> Rows:
-    """Return the rows that were chosen, all where nothing was said."""
-    return np.arange(size) if taken is None else np.sort(taken)
