@@ -29,7 +29,7 @@ from specflow.importers.measured.slip_findings import slip_findings
 from specflow.importers.measured.stated import PERSON, Stated, collect
 from specflow.importers.measured.statements import is_reading
 from specflow.importers.measured.subject import find_block, item_name, item_notes
-from specflow.importers.measured.values import column_name, read_values
+from specflow.importers.measured.values import column_name, read_values, with_register
 from specflow.importers.measured.words import fill_down, read_dates, read_words
 from specflow.importers.measured.work import TableWork
 from specflow.model.base import code_key
@@ -236,13 +236,14 @@ def _evidence(
         {
             column_name(meaning): read_words(work.table, meaning.column, work.rows)
             for meaning in work.of(*_KEPT)
-        },
+        }
+        | values.extra,
     )
     if work.mapping.pivot is not None and work.of(Role.PIVOT):
         stacked = stack(work, work.mapping.pivot, columns)
         if stacked is not None:
-            columns = stacked.columns
-            values.documents.append(stacked.value)
+            columns, documents = with_register(work, stacked.columns, [stacked.value])
+            values.documents += documents
             conditions.documents += stacked.conditions
     if block is not None and not work.stated.text("block"):
         work.stated.readings.append(ColumnReading("block", "", Role.STATED, f"block: {block.id}", block_from))

@@ -22,7 +22,7 @@ from specflow.importers.measured.result import Question
 from specflow.importers.measured.stated import Said
 from specflow.importers.measured.tables import FoundTable
 from specflow.model.base import code_key
-from specflow.model.columns import Columns
+from specflow.model.columns import UNSTATED, Columns, TextColumn
 from specflow.model.declared import UncertaintyEntry
 from specflow.units import (
     Unit,
@@ -44,13 +44,17 @@ _STATED = re.compile(
 
 @dataclass
 class Spread:
-    """u of one value column: float64 (NaN where unknown) or None; where it is from; the k it was divided by."""
+    """u of one value column: float64 (NaN where unknown) or None; where it is from; the k it was divided by.
+
+    ``lines`` names the register line of each row where several were used, None where one holds for all.
+    """
 
     u: Floats | None = None
     source: str = ""
     k: float | None = None
     question: Question | None = None
     notes: list[str] = field(default_factory=list)
+    lines: TextColumn | None = None
 
 
 def from_column(
@@ -123,11 +127,20 @@ def from_statement(said: Said, value: ColumnMeaning, low: Floats) -> Spread:
     return Spread(u, f"{said.by}: {said.text}", k, notes=[note] if note else [])
 
 
+@dataclass(frozen=True, slots=True)
+class Registered:
+    """What the register is asked for: the key of a parameter, the unit of its readings, 10·log or 20·log."""
+
+    parameter: str
+    unit: str
+    log_factor: int | None
+
+
 def from_register(
-    entries: Sequence[UncertaintyEntry], set_up: str, value: ColumnMeaning, low: Floats, conditions: Columns
+    entries: Sequence[UncertaintyEntry], set_up: str, value: Registered, low: Floats, conditions: Columns
 ) -> Spread:
     """Look up the register by set-up, parameter, frequency and level; of several lines the greatest u holds."""
-    parameter = value.quantity.parameter if value.quantity else ""
+    parameter = value.parameter
     mine = [
         entry
         for entry in entries
@@ -140,6 +153,7 @@ def from_register(
             else []
         )
     u = np.full(len(low), np.nan)
+    line = np.full(len(low), UNSTATED, np.int32)
     used: list[str] = []
     notes: list[str] = []
     frequency = _hertz(conditions)
@@ -158,14 +172,35 @@ def from_register(
             continue
         inside &= ~np.isnan(low)
         if inside.any():
-            u[inside] = np.fmax(u[inside], amount[inside])
+            greater = inside & ~(u >= amount)
+            u[greater], line[greater] = amount[greater], len(used)
             used.append(entry.id)
     if not used:
         return Spread(notes=[*notes, f"no register line of {set_up} covers these frequencies and levels"])
     without = int(np.count_nonzero(np.isnan(u) & ~np.isnan(low)))
     if without:
         notes.append(f"{without} values lie outside the lines of the register and have no uncertainty")
-    return Spread(u, f"register {', '.join(used)}", notes=notes)
+    lines = TextColumn(line, tuple(used)) if len(used) > 1 else None
+    return Spread(u, f"register {', '.join(used)}", notes=notes, lines=lines)
+
+
+def completed(own: Spread, register: Spread) -> Spread:
+    """Fill the rows that bring no uncertainty of their own from the register; the source says for how many."""
+    if own.u is None or register.u is None or own.question is not None:
+        return own
+    blank = np.isnan(own.u) & ~np.isnan(register.u)
+    count = int(np.count_nonzero(blank))
+    if not count:
+        return own
+    u = np.where(blank, register.u, own.u)
+    names = register.source.removeprefix("register ")
+    words = [_line_of(register, place, names) if blank[place] else "" for place in range(len(u))]
+    source = f"{own.source}; {register.source} in {count} of {len(u)} rows"
+    return Spread(u, source, own.k, notes=own.notes, lines=TextColumn.of(words))
+
+
+def _line_of(register: Spread, place: int, names: str) -> str:
+    return names if register.lines is None else register.lines.word(place)
 
 
 def _within(values: Floats | None, low: float | None, high: float | None, size: int) -> NDArray[np.bool_]:
@@ -188,13 +223,11 @@ def _hertz(conditions: Columns) -> Floats | None:
     return converter(parse_unit(conditions.units.get("frequency", "Hz")), parse_unit("Hz"))(values)
 
 
-def _level(entry: UncertaintyEntry, value: ColumnMeaning, low: Floats) -> Floats | None:
+def _level(entry: UncertaintyEntry, value: Registered, low: Floats) -> Floats | None:
     if entry.level_from is None and entry.level_to is None:
         return low
-    factor = value.parameter.log_factor if value.parameter else None
-    return converter(parse_unit(value.unit), parse_unit(entry.level_unit or value.unit), log_factor=factor)(
-        low
-    )
+    unit = parse_unit(entry.level_unit or value.unit)
+    return converter(parse_unit(value.unit), unit, log_factor=value.log_factor)(low)
 
 
 def _asked(meaning: ColumnMeaning, what: str, remedy: str) -> Spread:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Collection, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 
@@ -13,11 +13,18 @@ from specflow.importers.measured.linear_values import doubt_linear
 from specflow.importers.measured.readings import Numbers, read_numbers
 from specflow.importers.measured.result import Role
 from specflow.importers.measured.stated import Said
-from specflow.importers.measured.uncertainty import Spread, from_column, from_register, from_statement
+from specflow.importers.measured.uncertainty import (
+    Registered,
+    Spread,
+    completed,
+    from_column,
+    from_register,
+    from_statement,
+)
 from specflow.importers.measured.work import TableWork
-from specflow.model.columns import Columns
+from specflow.model.columns import Columns, TextColumn
 from specflow.model.declared import UncertaintyEntry
-from specflow.model.evidence import ValueArrays, ValueColumn
+from specflow.model.evidence import EvidenceColumns, ValueArrays, ValueColumn
 from specflow.units import Kind, format_unit, parse_unit
 
 ONE_FORMAT = "give the whole column one number format, and attach again"
@@ -32,10 +39,11 @@ _POSITIVE = frozenset(
 
 @dataclass
 class ReadValues:
-    """Documents of the value columns, and their arrays by name."""
+    """Documents of the value columns, their arrays by name, and what stands beside them row by row."""
 
     documents: list[ValueColumn] = field(default_factory=list)
     arrays: dict[str, ValueArrays] = field(default_factory=dict)
+    extra: dict[str, TextColumn] = field(default_factory=dict)
 
 
 def read_values(work: TableWork, conditions: Columns) -> ReadValues:
@@ -46,6 +54,8 @@ def read_values(work: TableWork, conditions: Columns) -> ReadValues:
         spread = _spread(work, meaning, numbers, conditions)
         name = column_name(meaning, read.arrays)
         read.arrays[name] = ValueArrays(numbers.low, numbers.high, spread.u)
+        if spread.lines is not None:
+            read.extra[f"u of {name} from"] = spread.lines
         read.documents.append(value_document(meaning, name, spread, numbers.notes))
     return read
 
@@ -124,12 +134,45 @@ def _spread(work: TableWork, value: ColumnMeaning, numbers: Numbers, conditions:
     elif stated is not None:
         spread = from_statement(stated, value, level)
     else:
-        register = work.context.snapshot.all(UncertaintyEntry)
-        spread = from_register(register, work.stated.text("set_up"), value, level, conditions)
+        spread = Spread()
+    set_up = work.stated.text("set_up")
+    register = from_register(
+        work.context.snapshot.all(UncertaintyEntry), set_up, _registered(value), level, conditions
+    )
+    spread = completed(spread, register) if own or stated is not None else register
     if spread.question:
         work.questions.append(spread.question)
     work.notes += [f"{value.header.text}: {note}" for note in spread.notes]
     return spread
+
+
+def _registered(value: ColumnMeaning) -> Registered:
+    parameter, quantity = value.parameter, value.quantity
+    return Registered(
+        quantity.parameter if quantity else "", value.unit, None if parameter is None else parameter.log_factor
+    )
+
+
+def with_register(
+    work: TableWork, columns: EvidenceColumns, values: Sequence[ValueColumn]
+) -> tuple[EvidenceColumns, list[ValueColumn]]:
+    """Give stacked columns, which bring no uncertainty of their own, that of the register."""
+    documents = []
+    for value in values:
+        arrays = columns.values[value.name]
+        parameter = work.context.dictionary.get(value.quantity.parameter)
+        if arrays.u is None and not value.uncertainty_from and parameter is not None:
+            asked = Registered(value.quantity.parameter, value.unit, parameter.log_factor)
+            ends = np.where(np.isfinite(arrays.low), arrays.low, arrays.high)
+            entries = work.context.snapshot.all(UncertaintyEntry)
+            spread = from_register(entries, work.stated.text("set_up"), asked, ends, columns.conditions)
+            work.notes += [f"{value.header}: {note}" for note in spread.notes]
+            changed = {**columns.values, value.name: ValueArrays(arrays.low, arrays.high, spread.u)}
+            lines = {} if spread.lines is None else {f"u of {value.name} from": spread.lines}
+            columns = replace(columns, values=changed, extra={**columns.extra, **lines})
+            value = value.model_copy(update={"uncertainty_from": spread.source})
+        documents.append(value)
+    return columns, documents
 
 
 def _stated_uncertainty(work: TableWork, value: ColumnMeaning) -> Said | None:

@@ -156,3 +156,58 @@ def test_layouts_with_other_coverage_factors_are_other_layouts(tmp_path: Path) -
         rows = [["Frequency", "Gain", "U"], ["GHz", "dB", unit], [27.5, 20, 0.8]]
         keys.add(one_table(book(tmp_path / "a.xlsx", rows)).layout_key)
     assert len(keys) == 3
+
+
+def _register(*lines: tuple[str, float, float, float]) -> list[UncertaintyEntry]:
+    return [
+        UncertaintyEntry(
+            id=id, set_up="bench 1", parameter="gain", standard_uncertainty=u, unit="dB",
+            frequency_from_hz=low * 1e9, frequency_to_hz=high * 1e9,
+        )
+        for id, u, low, high in lines
+    ]  # fmt: skip
+
+
+def test_the_line_of_the_register_is_named_row_by_row(tmp_path: Path) -> None:
+    rows = [["Set-up", "bench 1"], [], ["f (GHz)", "Gain (dB)"], [27.5, 20], [28.5, 21], [31, 22]]
+    lines = _register(("U-1", 0.2, 27, 28), ("U-2", 0.3, 28, 30))
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows), *lines))
+    assert table.document is not None and table.columns is not None
+    assert table.document.values[0].uncertainty_from == "register U-1, U-2"
+    assert [table.columns.extra["u of Gain from"].word(row) for row in range(3)] == ["U-1", "U-2", ""]
+    u = table.columns.values["Gain"].u
+    assert u is not None and u[:2].tolist() == [0.2, 0.3] and u[2] != u[2]
+    assert any("1 values lie outside the lines of the register" in note for note in table.notes)
+
+
+def test_rows_without_an_uncertainty_of_their_own_take_it_from_the_register(tmp_path: Path) -> None:
+    rows = [
+        ["Set-up", "bench 1"],
+        [],
+        ["f (GHz)", "Gain (dB)", "u Gain (dB)"],
+        [27.5, 20, 0.1],
+        [27.8, 21, None],
+    ]
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows), *_register(("U-1", 0.2, 27, 28))))
+    assert table.document is not None and table.columns is not None
+    assert table.document.values[0].uncertainty_from == "column C, standard; register U-1 in 1 of 2 rows"
+    u = table.columns.values["Gain"].u
+    assert u is not None and u.tolist() == [0.1, 0.2]
+    assert [table.columns.extra["u of Gain from"].word(row) for row in range(2)] == ["", "U-1"]
+
+
+def test_stacked_columns_take_theirs_from_the_register(tmp_path: Path) -> None:
+    rows = [["Set-up", "bench 1"], [], ["Vdd (V)", "Gain @ 27.5 GHz (dB)", "Gain @ 29 GHz (dB)"], [5, 20, 21]]
+    mapping = """
+    [[table]]
+    [table.pivot]
+    header = "Gain @ {frequency} GHz (dB)"
+    parameter = "gain"
+    unit = "dB"
+    units = { frequency = "GHz" }
+    """
+    lines = _register(("U-1", 0.2, 27, 28), ("U-2", 0.3, 28, 30))
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows), *lines, mapping=mapping))
+    assert table.columns is not None
+    (arrays,) = table.columns.values.values()
+    assert arrays.u is not None and arrays.u.tolist() == [0.2, 0.3]
