@@ -11,11 +11,7 @@ import numpy as np
 
 from specflow.derive import Derived, Request
 from specflow.derive.scattering_laws import SCATTERING_LAWS
-from specflow.importers.measured.column import ColumnMeaning
-from specflow.importers.measured.header_cells import HeaderCell
-from specflow.importers.measured.header_text import read_header
-from specflow.importers.measured.result import Role
-from specflow.importers.measured.uncertainty import from_register
+from specflow.importers.measured.uncertainty import Registered, from_register
 from specflow.model.declared import UncertaintyEntry
 from specflow.model.parameter import QuantityIdentity
 from specflow.model.snapshot import Snapshot
@@ -31,10 +27,7 @@ def with_register(
     arrays = derived.columns.values[derived.name]
     if request.law.name not in _LAWS or not set_up or arrays.u is not None:
         return derived
-    value = ColumnMeaning(
-        HeaderCell(0, 0, derived.name), read_header(derived.name), Role.VALUE, "", parameter=request.gives,
-        quantity=quantity, unit=derived.unit or "1",
-    )  # fmt: skip
+    value = Registered(quantity.parameter, derived.unit or "1", request.gives.log_factor)
     level = np.where(np.isfinite(arrays.low), arrays.low, np.nan)
     spread = from_register(snapshot.all(UncertaintyEntry), set_up, value, level, derived.columns.conditions)
     notes = (*derived.notes, *spread.notes)
