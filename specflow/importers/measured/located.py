@@ -92,6 +92,9 @@ class _Locator:
             areas.append(area)
             self._mappings.used.append(one.mapping)
             alone = one if one.mapping.alone else alone
+            if one.mapping.skip:
+                self.found.skipped.append(f"{self.where}, {table.place}: {one.source} says skip")
+                continue
             top = first_row_above(self._grid, area)
             above = CellRange(top, area.first_column, area.first_row, area.last_column)
             preamble = read_preamble(self._grid.cut(above), top, area.first_row)

@@ -42,7 +42,7 @@ def parts_of(table: FoundTable, mapping: LayoutMapping, context: Context) -> lis
     )
     if mapping.pivots or _is_settled(mapping):
         table = replace(table, doubts=())
-    if len(pivots) > 1:
+    if pivots and (len(pivots) > 1 or _values_beside(table, replace(read_as, pivots=pivots), context)):
         return _pivot_parts(table, replace(read_as, pivots=pivots), context)
     if not pivots:
         return [(part, read_as) for part in group_parts(table, context)]
@@ -98,7 +98,7 @@ def _pivot_parts(table: FoundTable, read_as: LayoutMapping, context: Context) ->
     ]
     taken = {header.column for headers in of_pivots for header in headers}
     others = tuple(header for header in table.headers if header.column not in taken)
-    values = {header.column for header in others if _is_value(header.text, header.unit, context)}
+    values = _values_beside(table, read_as, context)
     parts: list[Part] = []
     if values:
         parts.append((replace(table, headers=others), replace(read_as, pivots=())))
@@ -109,9 +109,21 @@ def _pivot_parts(table: FoundTable, read_as: LayoutMapping, context: Context) ->
     return parts
 
 
-def _is_value(text: str, unit: str, context: Context) -> bool:
-    """Whether a header names a quantity, and no condition or role."""
-    parts = read_header(text)
+def _values_beside(table: FoundTable, read_as: LayoutMapping, context: Context) -> set[int]:
+    """The columns of values that are no pivot."""
+    return {
+        header.column
+        for header in table.headers
+        if not any(pivot.is_about(header.text, header.letter) for pivot in read_as.pivots)
+        and _is_value(header, read_as.column(header.text, header.letter), context)
+    }
+
+
+def _is_value(header: HeaderCell, entry: ColumnMapping | None, context: Context) -> bool:
+    """Whether a column holds values, as the mapping says, else as its header names a quantity and no condition."""
+    if entry is not None and (entry.role or entry.parameter or entry.dimension):
+        return entry.role == Role.VALUE or (bool(entry.parameter) and not entry.role)
+    parts, unit = read_header(header.text), header.unit
     if find_dimension(parts.name) or role_of_words(parts) or uncertainty_of(parts):
         return False
     return bool(name_quantity(parts, unit or parts.unit, context.dictionary, context.planes).candidates)
