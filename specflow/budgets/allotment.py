@@ -5,7 +5,6 @@ from __future__ import annotations
 import math
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, replace
-from decimal import ROUND_CEILING, ROUND_FLOOR, Decimal
 
 import numpy as np
 from numpy.typing import NDArray
@@ -23,8 +22,9 @@ Floats = NDArray[np.float64]
 BlockParameter = tuple[str, str]
 """The keys of a block and of a parameter."""
 _FLAT = 1e-9
-_DECIBEL_STEP = Decimal("0.01")
-_DIGITS = 4
+_DECIMALS = 2  # of decibels
+_DIGITS = 4  # of other amounts
+_NEAR = 7  # decimals of a count that is whole but for binary noise
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -128,19 +128,24 @@ def rounded_widely(one: Allotment) -> Allotment:
 
 def _both_rounded(one: Allotment, *, inwards: bool) -> Allotment:
     low, high = one.ends(1)
-    return one.by_place(
-        np.array([_rounded(float(value), one.unit, up=inwards) for value in low]),
-        np.array([_rounded(float(value), one.unit, up=not inwards) for value in high]),
-    )
+    is_log = parse_unit(one.unit).is_log
+    return one.by_place(_rounded(low, is_log, up=inwards), _rounded(high, is_log, up=not inwards))
 
 
-def _rounded(value: float, unit: str, *, up: bool) -> float:
-    if math.isinf(value) or value == 0:
-        return value
-    exact = Decimal(repr(round(value, 9)))
-    step = _DECIBEL_STEP if parse_unit(unit).is_log else Decimal(10) ** (exact.adjusted() - _DIGITS + 1)
-    count = (exact / step).to_integral_value(ROUND_CEILING if up else ROUND_FLOOR)
-    return float(count * step)
+def _rounded(values: Floats, is_log: bool, *, up: bool) -> Floats:
+    """Round each value to a step of 0.01, or of its fourth digit: 1.7 stays 1.7, as it would on paper."""
+    known = np.isfinite(values) & (values != 0)
+    finite = np.where(known, np.round(values, 9), 1.0)
+    if is_log:
+        digits = np.full(values.shape, _DECIMALS)
+    else:
+        digits = _DIGITS - 1 - np.floor(np.log10(np.maximum(np.abs(finite), 1e-9))).astype(np.intp)
+    scale = 10.0 ** np.abs(digits)
+    # Times or divided by a whole power of ten, never by 0.01: the count comes out whole where the decimal is.
+    counts = np.where(digits >= 0, finite * scale, finite / scale)
+    near = np.round(counts, _NEAR)
+    whole = np.ceil(near) if up else np.floor(near)
+    return np.where(known, np.where(digits >= 0, whole / scale, whole * scale), values)
 
 
 def sides_that_matter(probe: Probe) -> NDArray[np.bool_]:

@@ -25,6 +25,7 @@ from specflow.budgets.allotment import (
     taken_first,
 )
 from specflow.budgets.allowed import Ends, worst_corner
+from specflow.budgets.bracketing import edge
 from specflow.budgets.chain import Overrides
 from specflow.budgets.closure import Closure, closure_test
 from specflow.budgets.contribution import Contribution, contribution
@@ -42,7 +43,6 @@ from specflow.parameters import Dictionary
 
 Floats = NDArray[np.float64]
 Way = Literal["equal", "proportional"]
-_STEPS = 110
 _RANGE = 30.0  # decades in which a scale is looked for
 _PASSES = 3
 _NOT_SHARED = ("desensitisation", "blocking_level")
@@ -184,8 +184,9 @@ def _shared(
         corner = worst_corner(probe, target, ends, changes)
         start = dict(enumerate(corner.values))
         parts = _parts(probe, law, numbers, start, way, target)
-        before, scale = scale, _scale(probe, target, law, numbers, start, parts)
-        changes = _values(probe, law, numbers, start, parts, scale)
+        growth = _Growth.of(probe, law, start, parts)
+        before, scale = scale, _scale(probe, target, growth, start)
+        changes = growth.values(scale)
         if np.allclose(before, scale, rtol=0, atol=1e-9):
             break
     words = f"{way} share of {target.name}"
@@ -229,43 +230,45 @@ def _front(figures: Figures, row: int) -> Floats:
     return np.ones(1) if gain is None else np.asarray(gain_before(gain)[row])
 
 
-def _values(
-    probe: Probe,
-    law: Contribution,
-    numbers: Sequence[int],
-    start: dict[int, Floats],
-    parts: dict[int, Floats],
-    scale: Floats,
-) -> dict[int, Floats]:
-    """Return the values of the shared lines for a scale (n,) in decades."""
-    figures = probe.figures(start)
-    gains = figures.arrays.get("gain")
-    values = {}
-    for number in numbers:
-        read = probe.chain.lines[number]
-        with np.errstate(divide="ignore"):
-            at_position = law.figure_for(parts[number] * 10.0**scale, _front(figures, read.row))
-        at_position = np.clip(at_position, -1e4, 1e4)
-        gain = gains[read.row] if gains is not None else np.zeros(1)
-        values[number] = line_value(
-            read, figure_of_line(probe.chain, read, at_position, gain), probe.dictionary
-        )
-    return values
+@dataclass(frozen=True, slots=True, eq=False)
+class _Growth:
+    """How the shared lines grow together: the gains in front of them stand still meanwhile."""
+
+    probe: Probe
+    law: Contribution
+    parts: dict[int, Floats]
+    gains: Floats | None
+    fronts: Floats | None
+
+    @classmethod
+    def of(
+        cls, probe: Probe, law: Contribution, start: dict[int, Floats], parts: dict[int, Floats]
+    ) -> _Growth:
+        """Return the growth from what the other lines stand at."""
+        gains = probe.figures(start).arrays.get("gain")
+        return cls(probe, law, parts, gains, None if gains is None else gain_before(gains))
+
+    def values(self, scale: Floats) -> dict[int, Floats]:
+        """Return the values of the shared lines for a scale (n,) in decades."""
+        grown = 10.0**scale
+        found = {}
+        for number, part in self.parts.items():
+            read = self.probe.chain.lines[number]
+            front = np.ones(1) if self.fronts is None else self.fronts[read.row]
+            with np.errstate(divide="ignore"):
+                at_position = np.clip(self.law.figure_for(part * grown, front), -1e4, 1e4)
+            gain = np.zeros(1) if self.gains is None else self.gains[read.row]
+            figure = figure_of_line(self.probe.chain, read, at_position, gain)
+            found[number] = line_value(read, figure, self.probe.dictionary)
+        return found
 
 
-def _scale(
-    probe: Probe,
-    target: Target,
-    law: Contribution,
-    numbers: Sequence[int],
-    start: dict[int, Floats],
-    parts: dict[int, Floats],
-) -> Floats:
+def _scale(probe: Probe, target: Target, growth: _Growth, start: dict[int, Floats]) -> Floats:
     """Return the greatest scale (n,), in decades, at which the margin is not gone; everywhere by itself."""
     row = probe.targets.index(target)
 
     def margin(scale: Floats) -> Floats:
-        changes = {**start, **_values(probe, law, numbers, start, parts, scale)}
+        changes = {**start, **growth.values(scale)}
         found = probe.margins(changes)[row]
         return np.where(np.isnan(found), np.inf, found)
 
@@ -279,11 +282,7 @@ def _scale(
             where=f"budget {probe.budget.id}",
             hint="relax the limit or the reserve, or change what is passive or fixed",
         )
-    for _ in range(_STEPS):
-        middle = (low + high) / 2.0
-        holds = margin(middle) >= 0
-        low, high = np.where(holds, middle, low), np.where(holds, high, middle)
-    return low
+    return edge(margin, high, low, margin(high), nothing)
 
 
 def _allotment(probe: Probe, number: int, value: Floats, at_most: bool, words: str) -> Allotment:

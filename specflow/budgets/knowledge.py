@@ -174,6 +174,12 @@ class _Table:
         self.own_spread = spread
         self.notes: dict[str, None] = {}
 
+    def source_number(self, words: str) -> int:
+        """Return the number of a source, listed when it is new."""
+        if words not in self.sources:
+            self.sources.append(words)
+        return self.sources.index(words)
+
     def finished(self, read: ReadLine) -> KnownLine:
         return KnownLine(
             read,
@@ -208,23 +214,20 @@ def _own_spread(chain: Chain, read: ReadLine) -> float:
 
 def _take_type(table: _Table, one: Knowledge, count: int) -> None:
     """Take the readings of best rank at every place: the mean of the specimens, and what they say of the next one."""
-    for place in np.unique(one.place):
-        rows = np.flatnonzero(one.place == place)
-        best = int(one.rank[rows].max())
-        if best < table.rank[place] or (table.is_known[place] and best == table.rank[place]):
-            continue
-        rows = rows[one.rank[rows] == best]
-        means = _item_means(one, rows)
-        n = len(means)
-        _set(table, one, int(place), rows, best, float(means.mean()), n)
-        if n >= 2:
-            deviation = float(means.std(ddof=1))
-            table.spread[place] = deviation * math.sqrt(1.0 / count + 1.0 / n)
-            table.freedom[place] = n - 1
-        else:
-            table.spread[place], table.freedom[place] = table.own_spread, math.inf
-            what = "one specimen says" if one.items[int(one.item[rows[0]])] else "a value of the design says"
-            instead = "the tolerance of the line is kept" if table.own_spread else "none is taken"
+    best = np.full(len(table.rank), -1, np.intp)
+    np.maximum.at(best, one.place, one.rank)
+    is_better = np.where(table.is_known, best > table.rank, best >= table.rank) & (best >= 0)
+    found = _Means.of(one, is_better[one.place] & (one.rank == best[one.place]), len(best))
+    _set(table, one, found, best)
+    several = found.places[found.count[found.places] >= 2]
+    n = found.count[several]
+    table.spread[several] = found.deviation[several] * np.sqrt(1.0 / count + 1.0 / n)
+    table.freedom[several] = n - 1.0
+    single = found.places[found.count[found.places] < 2]
+    table.spread[single], table.freedom[single] = table.own_spread, math.inf
+    instead = "the tolerance of the line is kept" if table.own_spread else "none is taken"
+    for is_item, what in ((True, "one specimen says"), (False, "a value of the design says")):
+        if ((found.specimens[single] > 0) == is_item).any():
             said = f"{what} nothing about the spread between specimens; {instead}"
             table.notes[f"{one.parameter} at position {one.position}: {said}"] = None
 
@@ -232,34 +235,63 @@ def _take_type(table: _Table, one: Knowledge, count: int) -> None:
 def _take_built(table: _Table, one: Knowledge, built_in: Collection[str]) -> None:
     """Take the readings of the specimens that stand in the system: they are those, so nothing is predicted."""
     is_built = np.array([code_key(item) in built_in for item in one.items], bool)[one.item]
-    for place in np.unique(one.place[is_built]):
-        rows = np.flatnonzero(is_built & (one.place == place))
-        best = int(one.rank[rows].max())
-        rows = rows[one.rank[rows] == best]
-        means = _item_means(one, rows)
-        _set(table, one, int(place), rows, best, float(means.mean()), len(means))
-        table.spread[place], table.freedom[place] = 0.0, math.inf
-        if len(means) > 1:
-            said = f"{len(means)} specimens stand in the system; their mean is taken"
+    best = np.full(len(table.rank), -1, np.intp)
+    np.maximum.at(best, one.place[is_built], one.rank[is_built])
+    found = _Means.of(one, is_built & (one.rank == best[one.place]), len(best))
+    _set(table, one, found, best)
+    table.spread[found.places], table.freedom[found.places] = 0.0, math.inf
+    for number in np.unique(found.count[found.places]):
+        if number > 1:
+            said = f"{number} specimens stand in the system; their mean is taken"
             table.notes[f"{one.parameter} at position {one.position}: {said}"] = None
 
 
-def _item_means(one: Knowledge, rows: Codes) -> Floats:
-    """Return one value a specimen: repeats on one are not more specimens."""
-    items = one.item[rows]
-    return np.array([float(one.value[rows[items == item]].mean()) for item in np.unique(items)])
+@dataclass(frozen=True, slots=True, eq=False)
+class _Means:
+    """Readings by place: ``places`` that have any, and for every place of evaluation (n,) the mean of its specimens,
+    how many they are (the design counts as one), those of them that are specimens, and their standard deviation.
+
+    Repeats on one specimen are not more specimens: they count by their mean.
+    """
+
+    rows: Codes
+    places: Codes
+    mean: Floats
+    count: Codes
+    specimens: Codes
+    deviation: Floats
+
+    @classmethod
+    def of(cls, one: Knowledge, kept: NDArray[np.bool_], size: int) -> _Means:
+        """Return the means of the rows that are kept."""
+        rows = np.flatnonzero(kept)
+        width = max(len(one.items), 1)
+        keys, inverse, repeats = np.unique(
+            one.place[rows] * width + one.item[rows], return_inverse=True, return_counts=True
+        )
+        means = np.bincount(inverse, one.value[rows], len(keys)) / repeats
+        place = keys // width
+        count = np.bincount(place, minlength=size).astype(np.intp)
+        whole = np.maximum(count, 1)
+        mean = np.bincount(place, means, size) / whole
+        squares = np.bincount(place, (means - mean[place]) ** 2, size)
+        is_item = np.array([bool(name) for name in one.items] or [False])[keys % width]
+        specimens = np.bincount(place[is_item], minlength=size).astype(np.intp)
+        deviation = np.sqrt(squares / np.maximum(count - 1, 1))
+        return cls(rows, np.flatnonzero(count), mean, count, specimens, deviation)
 
 
-def _set(table: _Table, one: Knowledge, place: int, rows: Codes, rank: int, value: float, n: int) -> None:
-    names = list(dict.fromkeys(one.sources[int(code)] for code in one.source[rows]))
-    words = ", ".join(names)
-    if words not in table.sources:
-        table.sources.append(words)
-    specimens = {one.items[int(code)] for code in one.item[rows]} - {""}
-    known = one.u[rows][~np.isnan(one.u[rows])]
-    table.value[place] = value
-    table.rank[place] = rank
-    table.source[place] = table.sources.index(words)
-    table.items[place] = len(specimens)
-    table.common[place] = float(known.max()) if len(known) else 0.0
-    table.is_known[place] = True
+def _set(table: _Table, one: Knowledge, found: _Means, best: Codes) -> None:
+    """Put value, rank, source, number of specimens and the uncertainty that all of them share."""
+    at, rows = found.places, found.rows
+    table.value[at], table.rank[at], table.items[at] = found.mean[at], best[at], found.specimens[at]
+    table.is_known[at] = True
+    greatest = np.zeros(len(best))
+    np.maximum.at(greatest, one.place[rows], np.nan_to_num(one.u[rows]))
+    table.common[at] = greatest[at]
+    named = np.zeros((len(best), len(one.sources)), bool)
+    named[one.place[rows], one.source[rows]] = True
+    patterns, inverse = np.unique(named[at], axis=0, return_inverse=True)
+    inverse = inverse.reshape(-1)  # one release of numpy gave it a second axis
+    numbers = [table.source_number(", ".join(np.array(one.sources)[pattern])) for pattern in patterns]
+    table.source[at] = np.array(numbers, np.intp)[inverse] if len(at) else table.source[at]

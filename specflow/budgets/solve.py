@@ -8,6 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from specflow.budgets.bracketing import MarginAt, edge
 from specflow.budgets.chain import LineKey, Overrides, ReadLine
 from specflow.budgets.closed_form import closed_form
 from specflow.budgets.inverse_figures import domain, figure_of_line, line_value
@@ -18,7 +19,6 @@ from specflow.model.snapshot import Snapshot
 from specflow.parameters import Dictionary
 
 Floats = NDArray[np.float64]
-MarginAt = Callable[[Floats], Floats]
 _STEPS = 120
 _GOLDEN = (5.0**0.5 - 1.0) / 2.0
 _CLOSE = 1e-9
@@ -99,21 +99,21 @@ def _of_target(probe: Probe, number: int, target: Target, row: int) -> _Ends:
     read = probe.chain.lines[number]
     bottom, top = domain(probe.chain, read)
     margin_at = _margin_at(probe, number, row)
-    found = _bracketed(margin_at, bottom, top, probe.size)
-    low, high, peak = found
+    exact = closed_form(probe, number, target)
+    figure = None if exact is None else figure_of_line(probe.chain, read, exact.value, _gain_of(probe, read))
+    if exact is None or figure is None or np.isnan(figure).any():
+        low, high, peak = _bracketed(margin_at, bottom, top, probe.size)
+        if np.any(peak < -_CLOSE):
+            _refuse(probe, read, target, peak)
+        return _Ends(target, low, high, False)
+    at_low, at_high = (margin_at(np.full(probe.size, end)) for end in (bottom, top))
+    peak = np.maximum(at_low, at_high)
     if np.any(peak < -_CLOSE):
         _refuse(probe, read, target, peak)
-    exact = closed_form(probe, number, target)
-    if exact is None:
-        return _Ends(target, low, high, False)
-    gain = _gain_of(probe, read)
-    figure = figure_of_line(probe.chain, read, exact.value, gain)
-    known = ~np.isnan(figure)
+    nothing = np.full(probe.size, np.inf)
     if exact.at_most:
-        high = np.where(np.isfinite(high) & known, figure, high)
-    else:
-        low = np.where(np.isfinite(low) & known, figure, low)
-    return _Ends(target, low, high, True)
+        return _Ends(target, -nothing, np.where(at_high >= 0, nothing, figure), True)
+    return _Ends(target, np.where(at_low >= 0, -nothing, figure), nothing, True)
 
 
 def _gain_of(probe: Probe, read: ReadLine) -> Floats:
@@ -144,18 +144,13 @@ def _bracketed(margin_at: MarginAt, bottom: float, top: float, size: int) -> tup
     if np.any(peak < 0):
         found, best = _highest(margin_at, low, high)
         inside, peak = np.where(peak < best, found, inside), np.maximum(peak, best)
-    first = np.where(at_low >= 0, -np.inf, _edge(margin_at, low, inside))
-    last = np.where(at_high >= 0, np.inf, _edge(margin_at, high, inside))
-    return first, last, peak
-
-
-def _edge(margin_at: MarginAt, outside: Floats, inside: Floats) -> Floats:
-    """Halve between a place that fails and one that holds; return the side that holds."""
-    for _ in range(_STEPS):
-        middle = (outside + inside) / 2.0
-        holds = margin_at(middle) >= 0
-        outside, inside = np.where(holds, outside, middle), np.where(holds, middle, inside)
-    return inside
+    ends = []
+    for end, at_end, is_open in ((low, at_low, -np.inf), (high, at_high, np.inf)):
+        if (at_end >= 0).all():
+            ends.append(np.full(size, is_open))
+        else:
+            ends.append(np.where(at_end >= 0, is_open, edge(margin_at, end, inside, at_end, peak)))
+    return ends[0], ends[1], peak
 
 
 def _highest(margin_at: MarginAt, low: Floats, high: Floats) -> tuple[Floats, Floats]:

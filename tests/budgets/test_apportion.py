@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from decimal import ROUND_CEILING, ROUND_FLOOR, Decimal
 from typing import Any
 
 import numpy as np
@@ -10,7 +11,7 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from specflow.budgets.allotment import Allotment
+from specflow.budgets.allotment import Allotment, rounded_safely
 from specflow.budgets.apportion import Apportionment, apportion
 from specflow.budgets.evaluate import evaluate_budget
 from specflow.calculators.apportionment import equal_share_iip3, equal_share_noise_figures, proportional_iip3
@@ -227,3 +228,27 @@ def test_shares_put_back_in_fill_the_limit(
     margin = result.served[0].smallest_margin
     assert -1e-9 <= margin < 0.06  # each of five figures is rounded down to 0.01 dB
     assert np.isfinite(margin)
+
+
+@settings(max_examples=300, deadline=None)
+@given(
+    value=st.one_of(
+        st.floats(-200, 200, allow_nan=False),
+        st.decimals(-200, 200, places=2).map(float),
+        st.floats(0.01, 1e6, allow_nan=False),
+    ),
+    is_log=st.booleans(),
+    up=st.booleans(),
+)
+def test_sides_are_rounded_as_on_paper(value: float, is_log: bool, up: bool) -> None:
+    """Against decimal arithmetic: steps of 0.01, or of the fourth digit."""
+    unit = "dB" if is_log else "W"
+    low, high = (value, math.inf) if up else (-math.inf, value)
+    one = Allotment("A", "gain", unit, low, high, True, 0.0, 0.0, "")
+    found = rounded_safely(one)
+    exact = Decimal(repr(round(value, 9)))
+    if exact == 0:
+        return
+    step = Decimal("0.01") if is_log else Decimal(10) ** (exact.adjusted() - 3)
+    expected = (exact / step).to_integral_value(ROUND_CEILING if up else ROUND_FLOOR) * step
+    assert (found.low if up else found.high) == pytest.approx(float(expected), rel=1e-12, abs=1e-12)
