@@ -3,16 +3,19 @@
 from __future__ import annotations
 
 import io
+import random
 import tempfile
 import zipfile
 from datetime import timedelta
 from pathlib import Path
 
+import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from specflow.errors import FileError
 from specflow.importers.readers import open_grids
+from tests.importers.readers.mutating import Seed, run, seeds
 from tests.importers.readers.workbooks import PARTS, by_hand
 
 SHEET = "xl/worksheets/sheet1.xml"
@@ -88,6 +91,14 @@ def test_changed_text_bytes(changes: list[tuple[float, str, bytes]]) -> None:
 
 
 @patient
-@given(st.binary(max_size=400), st.sampled_from(["a.csv", "a.xlsx"]))
+@given(st.binary(max_size=400), st.sampled_from(["a.csv", "a.xlsx", "a.xls", "a.ods", "a.jsonl", "a.html"]))
 def test_any_bytes(content: bytes, name: str) -> None:
     survives(name, content)
+
+
+@pytest.mark.parametrize("seed", seeds(), ids=lambda seed: seed.name)
+def test_a_changed_file_gives_its_own_numbers_or_one_refusal(seed: Seed, tmp_path: Path) -> None:
+    outcome = run(seed, 60, random.Random(f"suite {seed.name}"), tmp_path)
+    assert outcome.faults == []
+    assert sum(outcome.counts.values()) == 60
+    assert outcome.counts["read"] and outcome.counts["refused"] + outcome.compared
