@@ -162,12 +162,15 @@ def sides_that_matter(probe: Probe) -> NDArray[np.bool_]:
     return matters
 
 
-def taken_first(probe: Probe, numbers: Sequence[int]) -> tuple[list[Allotment], list[str]]:
+def taken_first(
+    probe: Probe, numbers: Sequence[int], *, by_conditions: bool = False
+) -> tuple[list[Allotment], list[str]]:
     """Return what lines take first, and notes on those that nothing bounds.
 
     A line with a tolerance takes its figure with it, from the least to the most of all places, on the sides that hurt.
     One without takes its figure as a limit where only one side hurts; where both do it is taken as exact, and said.
-    A figure that follows conditions by more than its tolerance gets sides that follow them too.
+    A figure that follows conditions by more than its tolerance gets sides that follow them too; ``by_conditions`` any
+    that follows them.
     """
     matters = sides_that_matter(probe)
     found: list[Allotment] = []
@@ -186,7 +189,8 @@ def taken_first(probe: Probe, numbers: Sequence[int]) -> tuple[list[Allotment], 
             low, high = (np.broadcast_to(end, (probe.size,)) for end in bounds(read))
             low = low if low_hurts else np.full(probe.size, -math.inf)
             high = high if high_hurts else np.full(probe.size, math.inf)
-            found.append(_first(read, low, high, "figure" if is_exact else "figure and tolerance"))
+            what = "figure" if is_exact else "figure and tolerance"
+            found.append(_first(read, low, high, what, by_conditions=by_conditions))
     return found, notes
 
 
@@ -198,7 +202,7 @@ def kept_first(
     return {key: one for key, one in agreed.items() if key in keys}
 
 
-def _first(read: ReadLine, low: Floats, high: Floats, what: str) -> Allotment:
+def _first(read: ReadLine, low: Floats, high: Floats, what: str, *, by_conditions: bool) -> Allotment:
     """Return what a line takes first: one number a side, or sides place by place where it moves by more than that."""
     line, values, tolerance = read.line, read.values, read.line.tolerance
     width = 0.0 if tolerance is None else tolerance.minus + tolerance.plus
@@ -207,7 +211,7 @@ def _first(read: ReadLine, low: Floats, high: Floats, what: str) -> Allotment:
     one = Allotment(
         line.block, line.parameter, line.unit, float(low.min()), float(high.max()), False, least, most, words
     )
-    return one.by_place(low, high) if most - least > width else one
+    return one.by_place(low, high) if by_conditions or most - least > width else one
 
 
 def ends_of(

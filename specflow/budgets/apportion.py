@@ -85,7 +85,7 @@ def apportion(
     """
     probe = Probe.of(budget, snapshot, dictionary, values=values)
     plan = plan_shares(probe, fixed)
-    first, notes = taken_first(probe, plan.first)
+    first, notes = taken_first(probe, plan.first, by_conditions=by_conditions)
     known = {one.key: one for one in map(rounded_widely, joined(first, f"budget {budget.id}"))}
     known |= kept_first(probe, plan.first, agreed or {})
     shares: list[Allotment] = []
