@@ -69,7 +69,7 @@ def _formats(book: Workbook) -> dict[str, Any]:
         "caution": book.add_format({"bold": True, "font_color": "#9C2A00"}),
         "label": book.add_format({"bold": True, "valign": "top"}),
         "header": book.add_format({**edge, "bold": True, "bg_color": "#E8EDF2"}),
-        "set_up": book.add_format({"bold": True, "top": 2, "bg_color": "#F3F3F3"}),
+        "heading": book.add_format({"bold": True, "top": 2, "bg_color": "#F3F3F3"}),
         "cell": book.add_format(edge),
         "fixed": book.add_format({**edge, "bold": True}),
         "entry": book.add_format(filled),

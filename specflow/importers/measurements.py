@@ -27,7 +27,7 @@ from specflow.importers.measured.result import (
 )
 from specflow.importers.readers import FileFingerprint, Grid, GridFile, open_grids, read_source, sheet
 from specflow.importers.readers.touchstone import has_option_line, is_touchstone, read_network
-from specflow.model.bench_sheet import MARK, BenchIdentity
+from specflow.model.bench_sheet import MARK, NOTHING_FILLED_IN, BenchIdentity
 from specflow.model.evidence import EvidenceFile, FileKind, HowRead
 from specflow.model.finding import Finding, Severity
 from specflow.model.origin import Origin
@@ -113,7 +113,9 @@ def _of_test_sheet(
     findings = [finding for table in bench.tables for finding in table.findings]
     findings += [_of_file(file, note) for note in bench.notes]
     if not bench.tables:
-        findings.append(_of_file(file, "nothing is filled in on this test sheet", Severity.ERROR))
+        empty = _of_file(file, "nothing is filled in on this test sheet", Severity.ERROR)
+        remedy = "write values into the yellow cells of the column Value"
+        findings.append(empty.model_copy(update={"rule": NOTHING_FILLED_IN, "remedy": remedy}))
     document = _file(file.fingerprint, bench.tables, person)
     return Measurements(document, tuple(bench.tables), tuple(findings), tuple(bench.skipped))
 

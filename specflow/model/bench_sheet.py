@@ -26,6 +26,7 @@ GUIDE_SHEET = "How to fill in"
 MARK = "specflow test sheet"
 FORMAT = 1
 COVERAGE_FACTOR = 2.0
+NOTHING_FILLED_IN = "attach-test-sheet-empty"  # the rule of the finding about a test sheet without a value
 
 
 class BenchCondition(Document):
@@ -97,8 +98,9 @@ class BenchColumn(Document):
 class BenchCell(Document):
     """One cell: what stands in it (None: nothing yet), and whether the bench writes into it.
 
-    ``kind`` is how it looks and what may be entered: title, text, caution, label, header, set_up, cell, item, value,
-    uncertainty, date, remark, entry. ``low`` and ``high`` bound a number that may be entered.
+    ``kind`` is how it looks and what may be entered: title, text, caution, label, header, heading, cell, item,
+    value, uncertainty, date, equipment, remark, range, and the names of ``ENTRIES``.
+    ``low`` and ``high`` bound a number that may be entered.
     """
 
     row: int

@@ -120,7 +120,7 @@ class _Layout:
         for number, one in enumerate(found, 1):
             row += 1
             words = f"Set-up {number} of {len(found)}: {one.words}"
-            self._put(row, 1, "set_up", f"{words} ({len(one.points)} value{'s' * (len(one.points) != 1)})")
+            self._put(row, 1, "heading", f"{words} ({len(one.points)} value{'s' * (len(one.points) != 1)})")
             for point in one.points:
                 row += 1
                 self._row(row, len(rows) + 1, point)

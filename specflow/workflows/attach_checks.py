@@ -6,6 +6,7 @@ from collections.abc import Mapping, Sequence
 
 from specflow.errors import DocumentError
 from specflow.model.base import code_key
+from specflow.model.bench_sheet import MARK, NOTHING_FILLED_IN
 from specflow.model.evidence import EvidenceTable
 from specflow.model.finding import Severity
 from specflow.workflows.attach_preview import AttachPreview, Decision
@@ -22,8 +23,12 @@ def check_acceptable(preview: AttachPreview, decision: Decision) -> Mapping[int,
 def _refuse_unsettled(preview: AttachPreview, decision: Decision) -> None:
     where = preview.path.name
     if not preview.measurements.tables:
+        faults = [one for one in preview.measurements.findings if one.severity is Severity.ERROR]
+        blank = next((one for one in faults if one.rule == NOTHING_FILLED_IN), None)
         raise DocumentError(
-            "no measurement table was found", where=where, hint="; ".join(preview.measurements.skipped)
+            blank.message if blank else "no measurement table was found",
+            where=where,
+            hint=blank.remedy if blank else "; ".join(preview.measurements.skipped),
         )
     if preview.unresolved and (not decision.take_rest or not preview.new_tables):
         table = preview.unresolved[0]
@@ -69,6 +74,19 @@ def _counted(count: int, one: str, many: str) -> str:
     return f"{count} {one if count == 1 else many}"
 
 
+def _is_filled_in_further(preview: AttachPreview, place: int, one: Replacement) -> bool:
+    """Whether a table is a test sheet that was stored half-filled, with all of its rows as they were and more.
+
+    Then it takes the place of the earlier one without a word: nothing else was said about any value.
+    """
+    earlier = preview.snapshot.find(EvidenceTable, one.earlier)
+    later = preview.measurements.tables[place].document
+    if earlier is None or later is None or one.differing or len(one.rows) != one.earlier_rows:
+        return False
+    layout = later.how_read.layout
+    return layout.startswith(MARK) and layout == earlier.how_read.layout
+
+
 def _refuse_unsaid(preview: AttachPreview, decision: Decision) -> Mapping[int, Sequence[Replacement]]:
     """Return the replacements that the person named; refuse where values differ and nothing was said."""
     wanted = {code_key(name) for name in decision.supersedes}
@@ -77,7 +95,7 @@ def _refuse_unsaid(preview: AttachPreview, decision: Decision) -> Mapping[int, S
     for place, found in preview.replacements.items():
         for one in found:
             seen.add(code_key(one.earlier))
-            if code_key(one.earlier) in wanted:
+            if code_key(one.earlier) in wanted or _is_filled_in_further(preview, place, one):
                 named.setdefault(place, []).append(one)
             elif one.differing and not decision.beside:
                 raise DocumentError(

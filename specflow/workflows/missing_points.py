@@ -9,7 +9,6 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
-from itertools import product
 
 import numpy as np
 
@@ -22,8 +21,9 @@ from specflow.model.requirement import Activity, Method, Requirement
 from specflow.model.snapshot import Snapshot
 from specflow.model.verdict import ActivityResult, CloseOut, Label, PointResults, RequirementStatus, Verdict
 from specflow.reports.points import absent_provers, is_prover, points_of, points_per_item
-from specflow.units import Quantity, format_unit, format_value, parse_unit, tolerance_unit
+from specflow.units import Quantity, format_unit, parse_unit, tolerance_unit
 from specflow.verification.limit_inputs import limit_columns
+from specflow.workflows.bench_rows import bounds_words, conditions_at, recorded_columns
 from specflow.workflows.evaluate_project import Evaluation
 
 ON_A_BENCH = (Method.TEST, Method.DEMONSTRATION, Method.INSPECTION)
@@ -185,11 +185,10 @@ class _Requirement:
     def _add(self, place: Place, activity: Activity, missing: Missing) -> None:
         requirement = self._requirement
         unit = format_unit(parse_unit(requirement.limit.unit or "1"))
-        expanded = _conditions_at(self._points, place.point)
+        expanded = conditions_at(self._points, place.point)
         if isinstance(expanded, str):
             missing.leave_out(requirement, f"{expanded}; attach a trace over it")
             return
-        limit = self._limit(place.point)
         for conditions in expanded:
             missing.points.append(
                 BenchPoint(
@@ -203,18 +202,18 @@ class _Requirement:
                     must_be_item=place.must_be_item,
                     conditions=conditions,
                     requirements=(requirement.id,),
-                    limits=(limit,),
+                    limits=(self._limit(place.point, conditions),),
                     why=(place.why,),
                 )
             )
 
-    def _limit(self, point: int) -> str:
+    def _limit(self, point: int, conditions: Sequence[BenchCondition]) -> str:
         """The limit at one point in words: its bounds there, or the whole of it where it has none by itself."""
         limit, points = self._requirement.limit, self._points
         if points is None:
             return limit_words(limit)
-        rows = np.array([0]), np.array([point])
-        columns = limit_columns(limit, points, None, *rows, self._declared)
+        here = np.array([0]), np.array([point])
+        columns = limit_columns(limit, points, recorded_columns(conditions), *here, self._declared)
         if set(tree_names(limit.tree)) - {*columns.numeric, *columns.text, *self._declared}:
             return limit_words(limit)
         bounds = evaluate_limit(limit, LimitContext(columns, self._declared, 1)).spread(1)
@@ -225,7 +224,7 @@ class _Requirement:
         if not (math.isfinite(low) or math.isfinite(high)):
             return limit_words(limit)
         strict = bool(bounds.lower_strict[0]), bool(bounds.upper_strict[0])
-        return _bounds_words(low, high, strict, bounds.unit)
+        return bounds_words(low, high, strict, bounds.unit)
 
 
 def _shown(result: ActivityResult) -> PointResults | None:
@@ -264,49 +263,3 @@ def _of_item(
         elif not found.proved[place]:
             words = Verdict(int(found.verdict[place])).words
             yield Place(place, item, must_be, f"{words}, does not prove")
-
-
-def _conditions_at(points: Points | None, place: int) -> list[tuple[BenchCondition, ...]] | str:
-    """The conditions of the rows that a point needs: one, or one a step of a range; a sentence where they are too many.
-
-    A range is proved when both its ends are reached and no gap exceeds its step, so its rows are the ends and what lies
-    between, a step apart.
-    """
-    if points is None:
-        return [()]
-    parts: list[list[BenchCondition]] = []
-    for name, values in points.columns_lo.numeric.items():
-        low, high = float(values[place]), float(points.columns_hi.numeric[name][place])
-        unit = points.columns_lo.units.get(name, "")
-        if math.isnan(low):
-            continue
-        if low == high:
-            parts.append([BenchCondition(dimension=name, unit=unit, value=low)])
-        elif name in points.step:
-            steps = _steps(low, high, points.step[name])
-            if len(steps) > MOST_OF_A_RANGE:
-                span = f"{format_value(low)} to {format_value(high)} {unit}".strip()
-                return f"{name.replace('_', ' ')} {span} has {len(steps)} values, too many to be filled in"
-            parts.append([BenchCondition(dimension=name, unit=unit, value=value) for value in steps])
-        else:
-            parts.append([BenchCondition(dimension=name, unit=unit, low=low, high=high)])
-    for name, words in points.columns_lo.text.items():
-        if words.word(place):
-            parts.append([BenchCondition(dimension=name, word=words.word(place))])
-    return [tuple(one) for one in product(*parts)]
-
-
-def _steps(low: float, high: float, step: float) -> list[float]:
-    """Both ends, and between them values a step apart (the last gap may be smaller)."""
-    count = max(math.ceil((high - low) / step - 1e-9), 1)
-    return [*(float(f"{low + number * step:.12g}") for number in range(count)), high]
-
-
-def _bounds_words(low: float, high: float, strict: tuple[bool, bool], unit: str) -> str:
-    sign = "" if unit in ("", "1") else f" {unit}"
-    if math.isfinite(low) and math.isfinite(high):
-        between = f"{format_value(low)} to {format_value(high)}{sign}"
-        return between if not any(strict) else f"between {between}"
-    if math.isfinite(low):
-        return f"{'more than' if strict[0] else 'at least'} {format_value(low)}{sign}"
-    return f"{'less than' if strict[1] else 'at most'} {format_value(high)}{sign}"

@@ -12,7 +12,7 @@ from typing import Any
 
 from specflow.errors import DocumentError
 from specflow.model.base import code_key
-from specflow.model.evidence import EvidenceFile, EvidenceTable
+from specflow.model.evidence import EvidenceFile, EvidenceTable, Supersession, Withdrawal
 from specflow.model.snapshot import Snapshot
 from specflow.store import ProjectStore
 from specflow.workflows.found_files import FileSearch, Whereabouts, find_files, reason_to_pass, shown_path
@@ -31,6 +31,7 @@ class FileState(StrEnum):
     VANISHED = "vanished"
     KEPT = "kept copy"  # the original is not there; the copy in the project was read
     DAMAGED = "damaged copy"  # the original is not there, and the copy in the project has other bytes
+    REPLACED = "replaced"  # changed or gone, and all its tables are superseded or withdrawn
     READ_OTHERWISE = (
         "reads otherwise"  # the same bytes, and this version or this project reads them otherwise
     )
@@ -38,7 +39,7 @@ class FileState(StrEnum):
     @property
     def is_fault(self) -> bool:
         """Whether the stored evidence can no longer be shown to be what the file says."""
-        return self not in (FileState.UNCHANGED, FileState.MOVED, FileState.KEPT)
+        return self not in (FileState.UNCHANGED, FileState.MOVED, FileState.KEPT, FileState.REPLACED)
 
 
 @dataclass(frozen=True, slots=True)
@@ -150,11 +151,20 @@ def _check(
         if found.other is not None:
             where += f" ({shown_path(found.other)} has other bytes)"
         return FileCheck(file, state, where, checks)
+    if _is_replaced(tables, snapshot) and not file.kept:
+        return FileCheck(file, FileState.REPLACED, shown_path(found.other) if found.other else "")
     if file.kept:
         return _check_copy(store, reader, file, tables, found.other)
     if found.other is not None:
         return FileCheck(file, FileState.CHANGED, shown_path(found.other), reader.check(tables, found.other))
     return FileCheck(file, FileState.VANISHED)
+
+
+def _is_replaced(tables: Sequence[EvidenceTable], snapshot: Snapshot) -> bool:
+    """Whether nothing that was read from a file stands any more."""
+    gone = {code_key(one.earlier) for one in snapshot.all(Supersession) if one.rows is None}
+    gone |= {code_key(one.table) for one in snapshot.all(Withdrawal) if one.rows is None}
+    return bool(tables) and all(code_key(table.id) in gone for table in tables)
 
 
 def _check_copy(

@@ -11,6 +11,7 @@ MOST_SHOWN = 40  # cells of one table that a person looks through; --json has a 
 _TONES = {
     FileState.UNCHANGED: CellTone.GOOD,
     FileState.KEPT: CellTone.GOOD,
+    FileState.REPLACED: CellTone.QUIET,
     FileState.MOVED: CellTone.DOUBTFUL,
 }
 
