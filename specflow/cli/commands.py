@@ -41,6 +41,7 @@ COMMANDS = (
     CommandEntry("load", "Load requirements, blocks and conditions from a workbook."),
     CommandEntry("budget", "Show budgets: along the chain, shares, slopes, margins."),
     CommandEntry("allocate", "Allocate a budget over its blocks."),
+    CommandEntry("testsheet", "Write a test sheet: the points still missing, for the bench."),
     CommandEntry("attach", "Attach measurement files."),
     CommandEntry("derive", "Derive results from raw tables by a law."),
     CommandEntry("known", "Evaluate a budget with the best that is known of each block."),
