@@ -2,7 +2,11 @@
 
 from __future__ import annotations
 
+from collections import defaultdict
+from collections.abc import Sequence
+
 from specflow.model.base import code_key
+from specflow.model.derivation import Derivation
 from specflow.model.evidence import EvidenceFile, EvidenceTable, ValueColumn
 from specflow.model.origin import column_letters
 from specflow.model.report import Align, CellTone, ReportCell, ReportColumn, ReportRow, ReportTable
@@ -19,6 +23,9 @@ EVIDENCE_COLUMNS = (
     ReportColumn(key="column", title="Column", width=8),
     ReportColumn(key="unit", title="Unit", width=10),
     ReportColumn(key="unit_from", title="Unit found in", width=22),
+    ReportColumn(
+        key="derived", title="Derived by", width=30, explains="derivation, law, settings, from which tables"
+    ),
     ReportColumn(key="conversions", title="Conversions applied", width=30),
     ReportColumn(key="uncertainty", title="Uncertainty from", width=30),
     ReportColumn(key="rows", title="Rows", align=Align.RIGHT, width=8),
@@ -39,8 +46,18 @@ def evidence_table(snapshot: Snapshot, results: Results) -> ReportTable:
     """Return one row a recorded quantity."""
     files = {code_key(file.id): file for file in snapshot.all(EvidenceFile)}
     served = requirements_served(snapshot, results)
+    read_by: dict[str, list[str]] = defaultdict(list)
+    for derivation in snapshot.all(Derivation):
+        for code in derivation.inputs:
+            read_by[code_key(code)].append(derivation.id)
     rows = tuple(
-        _row(table, column, files.get(code_key(table.file)), _serves(table, results, served))
+        _row(
+            table,
+            column,
+            files.get(code_key(table.file)),
+            _derived_by(table, snapshot),
+            _serves(table, results, served, read_by.get(code_key(table.id), ())),
+        )
         for table in snapshot.tables
         for column in table.values
     )
@@ -49,15 +66,24 @@ def evidence_table(snapshot: Snapshot, results: Results) -> ReportTable:
     )
 
 
-def _serves(table: EvidenceTable, results: Results, served: Served) -> ReportCell:
+def _derived_by(table: EvidenceTable, snapshot: Snapshot) -> str:
+    derivation = snapshot.find(Derivation, table.derivation)
+    if derivation is None:
+        return ""
+    return f"{derivation.id}: {derivation.words}, from {', '.join(derivation.inputs)}"
+
+
+def _serves(table: EvidenceTable, results: Results, served: Served, read_by: Sequence[str]) -> ReportCell:
     governed = served.get(code_key(table.id), {})
     if governed:
         return text(", ".join(f"{requirement} ({count})" for requirement, count in governed.items()))
+    if read_by:
+        return text(f"read by {', '.join(read_by)}")
     return text(results.unmatched.get(table.id) or "governs no required point", CellTone.DOUBTFUL)
 
 
 def _row(
-    table: EvidenceTable, column: ValueColumn, file: EvidenceFile | None, serves: ReportCell
+    table: EvidenceTable, column: ValueColumn, file: EvidenceFile | None, derived: str, serves: ReportCell
 ) -> ReportRow:
     return ReportRow(
         id=table.id,
@@ -70,6 +96,7 @@ def _row(
             text(column_letters(column.column)),
             text(column.unit),
             text(column.unit_from),
+            text(derived),
             text("; ".join(column.conversions)),
             text(column.uncertainty_from),
             ReportCell(text=str(table.rows), number=float(table.rows)),
