@@ -81,7 +81,11 @@ def figures_of(
     start = _start(chain, arrays, shape, slice_)
     groups = groups_of(chain.positions)
     stages = joined(arrays, groups, sum_law(chain)) if groups and gain is not None else arrays
-    taken = stages if mixers is None else with_image_noise(stages, mixers)
+    taken = (
+        stages
+        if mixers is None or gain is None
+        else with_image_noise(stages, mixers, _warmth(chain, slice_, gain))
+    )
     return Figures(chain, taken, start, arrays, stages)
 
 
@@ -192,6 +196,14 @@ def _noise(
     return array
 
 
+def _warmth(chain: Chain, slice_: slice, gain: Floats) -> list[Floats]:
+    """Return the physical temperature of each passive position over 290 K, 1 of the others."""
+    return [
+        relative_temperature(chain, row, slice_, gain.ndim - 1) if position.passive else np.ones(1)
+        for row, position in enumerate(chain.positions)
+    ]
+
+
 def makes_noise_of_loss(chain: Chain) -> list[int]:
     """Return the passive positions without a noise line: their noise is that of their loss."""
     stated = {read.row for read in chain.lines if read.role.figure == "noise_figure"}
@@ -226,7 +238,8 @@ def line_slopes(chain: Chain, values: Sequence[Floats], figures: Figures, gradie
     shape = next(iter(figures.arrays.values())).shape[1:]
     groups, mixers = groups_of(chain.positions), mixers_of(chain)
     if mixers is not None and "noise_figure" in figures.arrays:
-        gradient = gradient_through_image(figures.stages, mixers, gradient)
+        warmth = _warmth(chain, slice(None), figures.own["gain"])
+        gradient = gradient_through_image(figures.stages, mixers, warmth, gradient)
     if groups and "gain" in figures.arrays:
         gradient = gradient_of_positions(figures.own, figures.stages, groups, gradient, sum_law(chain))
     lossy = set(makes_noise_of_loss(chain))

@@ -1,10 +1,13 @@
 """Noise at the image frequency of a mixer, carried along the chain beside the noise at the signal frequency.
 
 In units of 290 K, with S the noise at the signal and Q that at the image frequency in front of a position of gain g,
-noise factor F and image rejection r (the linear part of the image that its filter lets through):
+noise factor F, image rejection r (the linear part of the image that its filter lets through) and physical temperature
+t where it is passive, else 1:
 
-- any position: S' = g·(S + F - 1), Q' = r·g·(Q + F - 1) + 1 - r, the filter being lossless and at 290 K at the image;
-- a mixer of single-sideband factor F = 2·F_DSB: its filter first, q = r·Q + 1 - r, then S' = Q' = g·(S + q + F - 2).
+- any position: S' = g·(S + F - 1), Q' = r·g·(Q + F - 1) + (1 - r)·t: where the image is kept off, the filter's own
+  noise is left;
+- a mixer of single-sideband factor F = 2·F_DSB: its filter first, q = r·Q + (1 - r)·t, then
+  S' = Q' = g·(S + q + F - 2).
 
 So a mixer behaves in Friis' formula as one of F + q - 1: its image's noise at 290 K, which every single-sideband figure
 counts once, gives way to the noise that is really there. Valid: equal conversion gain in both sidebands; figures of the
@@ -14,7 +17,7 @@ positions in front hold at the image too. Source: computed; one amplifier in fro
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from enum import Enum
 
@@ -83,14 +86,17 @@ def _linear(stages: Arrays, mixers: Mixers) -> tuple[Floats, Floats, Floats]:
     )
 
 
-def _forward(gain: Floats, noise: Floats, passed: Floats, mixers: Mixers) -> _Forward:
+def _forward(
+    gain: Floats, noise: Floats, passed: Floats, mixers: Mixers, warmth: Sequence[Floats]
+) -> _Forward:
     signal, image = [np.ones_like(gain[0])], [np.ones_like(gain[0])]
     taken: dict[int, Floats] = {}
     for row in range(mixers.last + 1):
         g, f, r, s, q = gain[row], noise[row], passed[row], signal[row], image[row]
+        kept = (1.0 - r) * warmth[row]
         match mixers.turns[row]:
             case Turn.IMAGE:
-                taken[row] = f + r * (q - 1.0)
+                taken[row] = f - 1.0 + r * q + kept
                 behind = g * (s + taken[row] - 1.0)
                 signal.append(behind)
                 image.append(behind)
@@ -100,19 +106,24 @@ def _forward(gain: Floats, noise: Floats, passed: Floats, mixers: Mixers) -> _Fo
                 image.append(behind)
             case Turn.NONE:
                 signal.append(g * (s + f - 1.0))
-                image.append(r * g * (q + f - 1.0) + 1.0 - r)
+                image.append(r * g * (q + f - 1.0) + kept)
     return _Forward(signal, image, taken)
 
 
-def with_image_noise(stages: Arrays, mixers: Mixers) -> dict[str, Floats]:
-    """Return the figures with the mixers' noise figures taken with the image noise that reaches them."""
+def with_image_noise(stages: Arrays, mixers: Mixers, warmth: Sequence[Floats]) -> dict[str, Floats]:
+    """Return the figures with the mixers' noise figures taken with the image noise that reaches them.
+
+    ``warmth`` is the physical temperature of each position over 290 K, 1 where it is not passive.
+    """
     noise = stages["noise_figure"].copy()
-    for row, factor in _forward(*_linear(stages, mixers), mixers).taken.items():
+    for row, factor in _forward(*_linear(stages, mixers), mixers, warmth).taken.items():
         noise[row] = _PER_NEPER * np.log(factor)
     return {**stages, "noise_figure": noise}
 
 
-def gradient_through_image(stages: Arrays, mixers: Mixers, gradient: Arrays) -> dict[str, Floats]:
+def gradient_through_image(
+    stages: Arrays, mixers: Mixers, warmth: Sequence[Floats], gradient: Arrays
+) -> dict[str, Floats]:
     """Return the derivatives to stated figures, from those to figures with image noise; the chain rule backwards."""
     found = {name: array.copy() for name, array in gradient.items()}
     for name in ("gain", "noise_figure", "image_rejection"):
@@ -120,7 +131,7 @@ def gradient_through_image(stages: Arrays, mixers: Mixers, gradient: Arrays) -> 
     if "noise_figure" not in gradient:
         return found
     gain, noise, passed = _linear(stages, mixers)
-    forward = _forward(gain, noise, passed, mixers)
+    forward = _forward(gain, noise, passed, mixers, warmth)
     to_signal, to_image = np.zeros_like(gain[0]), np.zeros_like(gain[0])
     for row in range(mixers.last, -1, -1):
         g, f, r, q = gain[row], noise[row], passed[row], forward.image[row]
@@ -135,13 +146,13 @@ def gradient_through_image(stages: Arrays, mixers: Mixers, gradient: Arrays) -> 
             through = r * g * to_image
             to_gain = to_gain + through * (q + f - 1.0)
             to_noise = to_noise + through
-            to_passed = to_image * (g * (q + f - 1.0) - 1.0)
+            to_passed = to_image * (g * (q + f - 1.0) - warmth[row])
             back_to_image = through
         elif turn is Turn.IMAGE:
             direct = gradient["noise_figure"][row] * _PER_NEPER / forward.taken[row]
             found["noise_figure"][row] = 0.0
             to_noise = to_noise + direct
-            to_passed = to_noise * (q - 1.0)
+            to_passed = to_noise * (q - warmth[row])
             back_to_image = to_noise * r
         found["gain"][row] += to_gain * NEPER
         found["noise_figure"][row] += to_noise * f * NEPER

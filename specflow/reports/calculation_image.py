@@ -1,7 +1,8 @@
 """The columns of a worksheet that follow the noise at the image frequency of mixers, in units of 290 K.
 
-Behind a position: at the signal S' = g·(S + F - 1), at the image Q' = r·g·(Q + F - 1) + 1 - r; a mixer is taken with
-F + r·(Q - 1), and behind it both are one. What feeds the chain is followed in the same way, for a source not at 290 K.
+Behind a position: at the signal S' = g·(S + F - 1), at the image Q' = r·g·(Q + F - 1) + (1 - r)·t; a mixer is taken
+with F - 1 + r·Q + (1 - r)·t, and behind it both are one; t is the physical temperature where it is passive. What feeds
+the chain is followed in the same way, for a source not at 290 K.
 """
 
 from __future__ import annotations
@@ -20,6 +21,8 @@ class Cells(Protocol):
     """The chain that the columns are put in."""
 
     outcome: BudgetOutcome
+    fixed: dict[str, Term]
+    temperatures: dict[int, Term]
 
     def own(self, key: str, row: int) -> Term:
         """Return the cell of a column at one position."""
@@ -52,8 +55,20 @@ def _noise_figure(cells: Cells, row: int) -> Term:
     if cells.outcome.turns[row] != "image":
         return own
     factor, passed, noise = _ratio(own), _passed(cells, row), _before(cells, "image_noise", row)
-    value = factor.value + passed.value * (noise.value - 1.0)
-    return Term(f"10*LOG10({factor.text}+{passed.text}*({noise.text}-1))", 10.0 * math.log10(value))
+    kept = _kept(cells, row, passed)
+    value = factor.value - 1.0 + passed.value * noise.value + kept.value
+    text = f"10*LOG10({factor.text}-1+{passed.text}*{noise.text}+{kept.text})"
+    return Term(text, 10.0 * math.log10(value))
+
+
+def _kept(cells: Cells, row: int, passed: Term) -> Term:
+    """Return the noise of a filter where it keeps the image off, 290 K = 1."""
+    own = Term(f"(1-{passed.text})", 1.0 - passed.value)
+    kelvin = cells.temperatures.get(row)
+    if kelvin is None:
+        return own
+    t0 = cells.fixed["t0"]
+    return Term(f"{own.text}*{kelvin.text}/{t0.text}", own.value * kelvin.value / t0.value)
 
 
 def _behind(cells: Cells, row: int, figure: str, before: str) -> Term:
@@ -71,8 +86,8 @@ def _image(cells: Cells, row: int) -> Term:
     if cells.outcome.turns[row] != "none":
         return cells.own("signal_noise", row)
     passed, behind = _passed(cells, row), _behind(cells, row, "noise_figure", "image_noise")
-    value = passed.value * behind.value + 1.0 - passed.value
-    return Term(f"{passed.text}*{behind.text}+1-{passed.text}", value)
+    kept = _kept(cells, row, passed)
+    return Term(f"{passed.text}*{behind.text}+{kept.text}", passed.value * behind.value + kept.value)
 
 
 def _weight(cells: Cells, row: int) -> Term:

@@ -16,7 +16,14 @@ from specflow.errors import SpecflowError
 from specflow.model.budget import Budget
 from specflow.parameters import load_dictionary
 from tests.budgets.chains import a_chain, project_of
-from tests.builders import a_quantity, a_requirement, at_least, at_most
+from tests.builders import (
+    a_conditions_set,
+    a_dimension,
+    a_quantity,
+    a_requirement,
+    at_least,
+    at_most,
+)
 
 DICTIONARY = load_dictionary()
 STEP = 1e-4
@@ -302,3 +309,22 @@ def test_an_intercept_of_a_chain_with_a_filter_is_not_touched() -> None:
     ]
     found = evaluate_budget(budget, project_of(budget, requirements=both), DICTIONARY).of("iip3").result
     assert found == pytest.approx(-10 * math.log10(1.0 + 10 ** ((15 - 10) / 10)))
+
+
+@pytest.mark.parametrize("rejection", [0.0, 3.0, 40.0])
+def test_a_passive_chain_in_equilibrium_makes_the_noise_of_its_temperature_at_the_image_too(
+    rejection: float,
+) -> None:
+    """Source, filter and mixer's termination at 350 K: the mixer sees 350 K in both sidebands, whatever is rejected."""
+    hot = a_conditions_set("CS", a_dimension("temperature_ambient", "K", values=(350.0,)))
+    budget = a_chain(
+        {"block": "FIL", "insertion_loss": 2.0, "passive": True, "image_rejection": rejection},
+        mixer("DSB", 3.0),
+        parameter="system_noise_temperature",
+        noise_source=350.0,
+        conditions="CS",
+    )
+    result = evaluate_budget(budget, project_of(budget, hot, limit=at_most(1e6, "K")), DICTIONARY)
+    loss = 10**0.2
+    expected = loss * (2 * 350.0 + 2 * 290.0 * (10**0.3 - 1))
+    assert result.of("system_noise_temperature").result == pytest.approx(expected)
