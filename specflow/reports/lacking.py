@@ -15,6 +15,7 @@ from specflow.model.evidence import EvidenceColumns, EvidenceTable
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Snapshot
 from specflow.model.verdict import PointResults, RequirementStatus
+from specflow.parameters.relations import parameters_telling
 from specflow.reports.origins import OriginFinder
 
 MOST_EXPLAINED = 60  # sentences for one requirement; each looks at all its records
@@ -54,7 +55,7 @@ class Lacking:
             if words:
                 said.append((words.count(";"), f"nearest in {table.id}: {words}"))
         if not said:
-            return f"no record of item {item}" if item else "no record of this quantity"
+            return self._near_miss or (f"no record of item {item}" if item else "no record of this quantity")
         return min(said, key=lambda pair: pair[0])[1]
 
     def _records(self, item: str) -> list[tuple[EvidenceTable, Columns]]:
@@ -94,18 +95,26 @@ class Lacking:
         return code_key(known.id if known else recorded) == code_key(item)
 
     @cached_property
+    def _near_miss(self) -> str:
+        """What was recorded of the quantity and may not be compared: its statistic, plane or unit is another."""
+        for one in self._status.mismatches:
+            if one.kind not in ("conditions", "requirement"):
+                return f"{one.column} of {one.table} may not be compared: {one.what}"
+        return ""
+
+    @cached_property
     def _tables(self) -> Mapping[str, Sequence[str]]:
         """The value columns with the quantity, by table; those left out that may not be compared."""
         refused = {
             (code_key(one.table), one.column) for one in self._status.mismatches if one.kind != "conditions"
         }
-        key = code_key(self._requirement.quantity.parameter)
+        told_by = parameters_telling(self._requirement.quantity.parameter)
         found: dict[str, list[str]] = {}
         for table in self._snapshot.tables_of_block.get(code_key(self._requirement.block), ()):
             names = [
                 column.name
                 for column in table.values
-                if code_key(column.quantity.parameter) == key
+                if code_key(column.quantity.parameter) in told_by
                 and (code_key(table.id), column.name) not in refused
             ]
             if names and table.rows <= MOST_ROWS:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Container, Iterator
 
 from specflow.model.base import code_key
 from specflow.model.card import TrailStep
@@ -55,15 +55,17 @@ def reading_steps(table: EvidenceTable, snapshot: Snapshot, depth: int) -> Itera
     yield TrailStep(depth=depth, kind="read by", id=table.id, text=", ".join(filter(None, facts)))
 
 
-def column_steps(table: EvidenceTable, depth: int, *, parameter: str = "") -> Iterator[TrailStep]:
+def column_steps(
+    table: EvidenceTable, depth: int, *, parameters: Container[str] | None = None
+) -> Iterator[TrailStep]:
     """Give the columns: of each what it means, where its unit was found, what was converted, where u is from.
 
-    Of the value columns only those of ``parameter``, if one is given.
+    Of the value columns only those of ``parameters`` (keys), if they are given.
     """
     for condition in table.conditions:
         yield TrailStep(depth=depth, kind="condition", id=table.id, text=_condition_words(condition))
     for column in table.values:
-        if parameter and code_key(column.quantity.parameter) != code_key(parameter):
+        if parameters is not None and code_key(column.quantity.parameter) not in parameters:
             continue
         yield TrailStep(depth=depth, kind="column", id=table.id, text=_column_words(column))
 

@@ -16,6 +16,7 @@ from specflow.model.report import CellTone, ReportCell, ReportColumn, ReportRow,
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Results, Snapshot
 from specflow.model.verdict import ActivityResult, PointResults, RecordRef, RequirementStatus, Verdict
+from specflow.parameters.relations import parameters_telling, relation_between
 from specflow.reports.budget_trail import budget_words, line_words
 from specflow.reports.derivation_trail import derivation_steps, table_derivation_steps
 from specflow.reports.figures import interval, label_tone, margin, share, verdict_tone
@@ -165,7 +166,7 @@ def _evidence(
                     id=record.table if record else "",
                     text=f"{words_of(points, place)}{f', item {item}' if item else ''}: "
                     f"{_point_words(found, place, requirement, status, lacking)}"
-                    f"{_as_recorded(record, requirement, finder) if how_read else ''}",
+                    f"{_as_recorded(record, requirement, finder, how_read)}",
                     tone=verdict_tone(_verdict(found, place)),
                     origin=finder.origin(record),
                 )
@@ -177,9 +178,17 @@ def _evidence(
                 )
 
 
-def _as_recorded(record: RecordRef | None, requirement: Requirement, finder: OriginFinder) -> str:
-    """Say what stands in the cell where its unit is not that of the limit: the value was converted to be judged."""
-    if record is None or finder.column(record).unit == requirement.limit.unit:
+def _as_recorded(
+    record: RecordRef | None, requirement: Requirement, finder: OriginFinder, how_read: bool
+) -> str:
+    """Say what stands in the cell where it is another quantity, or (``how_read``) in another unit than the limit."""
+    if record is None:
+        return ""
+    column = finder.column(record)
+    relation = relation_between(column.quantity.parameter, requirement.quantity.parameter)
+    if relation is not None:
+        return f" · recorded as {relation.recorded.title} {finder.recorded(record).text}; {relation.words}"
+    if not how_read or column.unit == requirement.limit.unit:
         return ""
     return f" · recorded as {finder.recorded(record).text}, converted"
 
@@ -199,7 +208,7 @@ def _files(
         yield file_step(tables[0], snapshot).model_copy(update={"depth": 1, "origin": None})
         for table in tables if how_read else ():
             yield from reading_steps(table, snapshot, 2)
-            yield from column_steps(table, 3, parameter=requirement.quantity.parameter)
+            yield from column_steps(table, 3, parameters=parameters_telling(requirement.quantity.parameter))
 
 
 def deciding(found: PointResults | None, places: Sequence[int], most: int) -> Sequence[int]:

@@ -115,7 +115,7 @@ def _upgrade(place: Place, clock: Clock, backup_folder: Path | None) -> str:
         raise StoreError(
             "the project has an older schema and is opened to be read only",
             where=place.name,
-            hint="a command that stores (specflow load, specflow attach, specflow allocate; not with --dry-run) copies it "
+            hint="any command that stores (load, attach, allocate; not with --dry-run), as in specflow load, copies it "
             "aside and upgrades it first",
         )
     with translated(place.name):

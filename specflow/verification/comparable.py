@@ -1,7 +1,8 @@
 """May values of one recorded quantity be held against a limit on another? Only like compares with like.
 
-Plane, statistic, bandwidth and polarisation must be the same. Two differences can be bridged, and it is said: a
-declared path between planes, and another reference bandwidth where the spectrum is noise-like (it scales) or a
+Plane, statistic, bandwidth and polarisation must be the same. Three differences can be bridged, and it is said: another
+parameter that tells the same by a formula (``relations``), a declared path between planes, and another reference
+bandwidth where the spectrum is noise-like (it scales) or a
 discrete line (it does not); of an unknown spectrum the reading is only known to lie between the two.
 """
 
@@ -22,6 +23,7 @@ from specflow.model.block import Block
 from specflow.model.evidence import EvidenceTable, SpectrumKind, ValueArrays, ValueColumn
 from specflow.model.parameter import Parameter, QuantityIdentity
 from specflow.model.verdict import Mismatch
+from specflow.parameters.relations import KEPT, Relation, relation_between
 from specflow.units import Converter, Kind, Unit, converter, missing_between_planes
 from specflow.verification.spectrum import WITHOUT_BANDWIDTH, recorded_bandwidth, scales, shares
 
@@ -37,7 +39,8 @@ class Fit:
     """How recorded values become values of the required quantity, in the unit of the limit.
 
     ``least_db`` and ``most_db`` are added to the low and the high end (dB); they differ where the spectrum is unknown.
-    ``u_db`` is the standard uncertainty of a path between planes. ``exact`` means compared as written.
+    ``u_db`` is the standard uncertainty of a path between planes. ``exact`` means compared as written. ``through`` is
+    what is done first where another parameter was recorded.
     """
 
     convert: Converter
@@ -45,16 +48,24 @@ class Fit:
     most_db: float = 0.0
     u_db: float = 0.0
     notes: tuple[str, ...] = ()
+    through: Through | None = None
 
     @property
     def exact(self) -> bool:
         """Whether nothing at all was done to the values."""
-        return self.convert.is_identity and not (self.least_db or self.most_db)
+        return self.convert.is_identity and self.through is None and not (self.least_db or self.most_db)
+
+    @property
+    def words(self) -> str:
+        """What the values were converted by."""
+        return self.convert.words if self.through is None else self.through.relation.words
 
     def apply(self, arrays: ValueArrays) -> ValueArrays:
         """Return the values in the unit of the limit; UnitError for a value that has none (log of a negative)."""
         if self.exact and not self.u_db:
             return arrays
+        if self.through is not None:
+            arrays = self.through.apply(arrays)
         low = self._ends(arrays.low)
         high = low if arrays.high is arrays.low else self._ends(arrays.high)
         u = None if arrays.u is None else self._spread(arrays)
@@ -97,6 +108,18 @@ class Fit:
 
 
 @dataclass(frozen=True, slots=True)
+class Through:
+    """The way over a relation: recorded values in the unit that its formula takes, and the formula."""
+
+    convert: Converter
+    relation: Relation
+
+    def apply(self, arrays: ValueArrays) -> ValueArrays:
+        """Return readings of the parameter that is wanted, in the unit of the dictionary."""
+        return self.relation.apply(Fit(self.convert).apply(arrays))
+
+
+@dataclass(frozen=True, slots=True)
 class Wanted:
     """The quantity a limit is on, and its unit.
 
@@ -129,9 +152,15 @@ def fit(
         return _differs(table, column, "statistic", found.statistic, wanted.statistic)
     if not _same(found.polarisation, wanted.polarisation):
         return _differs(table, column, "polarisation", found.polarisation, wanted.polarisation)
+    relation = relation_between(found.parameter, wanted.parameter)
+    if relation is not None and _plain(found.statistic) not in KEPT:
+        what = f"recorded as {relation.recorded.title}, and a {found.statistic} of it is none of {wanted.parameter}"
+        return _mismatch(table, column, "statistic", what, "record single values, the worst or the median")
     try:
         target = unit_of(unit or "1")
-        convert = _conversion(column.unit or "1", unit or "1", parameter and parameter.log_factor)
+        through = None if relation is None else _through(column, relation)
+        source = column.unit or "1" if relation is None else relation.wanted.unit
+        convert = _conversion(source, unit or "1", parameter and parameter.log_factor)
     except UnitError as error:
         what = f"recorded in {column.unit or 'no unit'}, the limit is in {unit}: {error.message}"
         return _mismatch(
@@ -144,15 +173,23 @@ def fit(
     if isinstance(scaled, Mismatch):
         return scaled
     notes = () if convert.is_identity else (convert.words,)
+    if through is not None:
+        notes = (through.relation.words, *notes)
     if moved is scaled is _NO_SHIFT:
-        return Fit(convert, notes=notes)
+        return Fit(convert, notes=notes, through=through)
     return Fit(
         convert,
         moved.least_db + scaled.least_db,
         moved.most_db + scaled.most_db,
         moved.u_db,
         (*notes, *moved.notes, *scaled.notes),
+        through,
     )
+
+
+def _through(column: ValueColumn, relation: Relation) -> Through:
+    scale = relation.recorded
+    return Through(_conversion(column.unit or "1", scale.unit, scale.log_factor), relation)
 
 
 def _inherited(

@@ -31,6 +31,10 @@ class Source:
     column: ValueColumn
     place: int
 
+    def is_of(self, parameter: str) -> bool:
+        """Whether values of this very parameter were recorded."""
+        return code_key(self.column.quantity.parameter) == code_key(parameter)
+
 
 @dataclass(frozen=True, slots=True)
 class Held:
@@ -144,9 +148,7 @@ def _lost(part: Held, values: ValueArrays) -> Sequence[Mismatch]:
     if not count:
         return ()
     table, column = part.source.table, part.source.column
-    what = (
-        f"{count} of {table.rows} values have no meaning in the unit of the limit ({part.fit.convert.words})"
-    )
+    what = f"{count} of {table.rows} values have no meaning in the unit of the limit ({part.fit.words})"
     return (Mismatch(table.id, column.name, count, what, "look at these values in the sheet", "value"),)
 
 

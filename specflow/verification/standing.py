@@ -24,6 +24,7 @@ from specflow.model.evidence import EvidenceTable, Supersession, Withdrawal
 from specflow.model.requirement import Method
 from specflow.model.snapshot import Snapshot
 from specflow.model.verdict import Standing
+from specflow.parameters.relations import parameters_telling
 from specflow.verification.changed import Touch, touched
 from specflow.verification.dates import day_of, is_after
 from specflow.verification.outdated import outdated_tables
@@ -171,7 +172,9 @@ class StandingRegister:
     ) -> Iterable[tuple[str, NDArray[np.bool_]]]:
         for touch in self.changes.get(code_key(table.block), ()):
             change = touch.change
-            if change.parameters and code_key(parameter) not in map(code_key, change.parameters):
+            if change.parameters and parameters_telling(parameter).isdisjoint(
+                map(code_key, change.parameters)
+            ):
                 continue
             if table.method not in _TOUCHED.get(change.aspect, frozenset(Method)):
                 continue

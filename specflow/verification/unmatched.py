@@ -16,6 +16,7 @@ from specflow.model.evidence import EvidenceTable
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Snapshot
 from specflow.model.verdict import Mismatch
+from specflow.parameters.relations import parameters_telling
 from specflow.verification.records import Records, Source
 from specflow.verification.workspace import Workspace
 
@@ -77,7 +78,7 @@ def _contradiction(table: EvidenceTable, requirement: Requirement) -> str:
     if code_key(table.block) != code_key(requirement.block):
         return f"the sheet names {requirement.id}, which is on {requirement.block}; the table is on {table.block}"
     parameters = {code_key(column.quantity.parameter) for column in table.values}
-    if code_key(requirement.quantity.parameter) not in parameters:
+    if parameters_telling(requirement.quantity.parameter).isdisjoint(parameters):
         return f"the sheet names {requirement.id} ({requirement.quantity.parameter}), which the table does not hold"
     return ""
 
@@ -85,12 +86,16 @@ def _contradiction(table: EvidenceTable, requirement: Requirement) -> str:
 def unmatched(workspace: Workspace) -> Mapping[str, str]:
     """Return the tables of which no reading serves any requirement, by id, with the reason."""
     asked = {
-        (code_key(one.block), code_key(one.quantity.parameter)) for one in workspace.snapshot.requirements
+        (code_key(one.block), parameter)
+        for one in workspace.snapshot.requirements
+        for parameter in parameters_telling(one.quantity.parameter)
     }
     reasons: dict[str, str] = {}
     read = {code_key(code) for one in workspace.snapshot.all(Derivation) for code in one.inputs}
     for table in workspace.snapshot.tables:
-        if table.id in workspace.served or code_key(table.id) in read:  # what was made of it is looked at instead
+        if (
+            table.id in workspace.served or code_key(table.id) in read
+        ):  # what was made of it is looked at instead
             continue
         reasons[table.id] = _reason(table, asked, workspace)
     return reasons

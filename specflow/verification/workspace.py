@@ -31,6 +31,7 @@ from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Snapshot
 from specflow.model.verdict import Mismatch
 from specflow.parameters import Dictionary
+from specflow.parameters.relations import related_to
 from specflow.statistics.decision import AcceptanceInterval
 from specflow.units import Quantity, parse_unit
 from specflow.verification.changed import changes_below
@@ -109,6 +110,13 @@ class Workspace:
                 found[key].append(Source(table, column, place))
         return dict(found)
 
+    def sources_for(self, block: str, parameter: str) -> Sequence[Source]:
+        """Return the value columns of a parameter of a block, then those of parameters that tell it by a relation."""
+        of_block, own = code_key(block), code_key(parameter)
+        found = self.sources.get((of_block, own), ())
+        related = [one for key in related_to(own) for one in self.sources.get((of_block, key), ())]
+        return [*found, *related] if related else found
+
     @cached_property
     def datasheets(self) -> frozenset[str]:
         """Keys of the files whose figures are a maker's, not a reading of a specimen."""
@@ -119,8 +127,8 @@ class Workspace:
         """Load the arrays of all tables that may serve these requirements, in one go."""
         tables: dict[str, None] = {}
         for requirement in requirements:
-            key = code_key(requirement.block), code_key(requirement.quantity.parameter)
-            tables.update(dict.fromkeys(source.table.id for source in self.sources.get(key, ())))
+            sources = self.sources_for(requirement.block, requirement.quantity.parameter)
+            tables.update(dict.fromkeys(source.table.id for source in sources))
         wanted = [table for table in tables if table not in self._columns]
         if wanted:
             self._load(wanted)
@@ -206,7 +214,7 @@ class Workspace:
         Tables recorded for this requirement before its plane, statistic, bandwidth or polarisation was changed are
         among them, as stale: their fails stay open until they are re-verified.
         """
-        sources = self.sources.get((code_key(requirement.block), code_key(want.quantity.parameter)), ())
+        sources = self.sources_for(requirement.block, want.quantity.parameter)
         own = code_key(requirement.id) if requirement.revision > 1 else ""
         if own and not any(code_key(source.table.requirement or "") == own for source in sources):
             own = ""
@@ -219,19 +227,22 @@ class Workspace:
     def _gathered(self, block_id: str, want: Wanted, sources: Sequence[Source], own: str) -> Records:
         held: list[Held] = []
         mismatches: list[Mismatch] = []
+        aside: list[
+            Mismatch
+        ] = []  # of other parameters that are related: worth a word only where nothing serves
         for source in sources:
             found = self._fit(source, want, block_id)
             if not isinstance(found, Mismatch):
                 held.append(self._held(source, found))
                 continue
-            mismatches.append(found)
+            (mismatches if source.is_of(want.quantity.parameter) else aside).append(found)
             if own and code_key(source.table.requirement or "") == own and found.kind in IDENTITY:
-                before = self._fit(source, replace(want, quantity=source.column.quantity), block_id)
+                before = self._fit(source, _of(source, want), block_id)
                 if not isinstance(before, Mismatch):
                     reason = f"{source.table.id}: recorded for {source.table.requirement}, but {found.what}"
                     held.append(self._held(source, before, reason))
         if not held:
-            return no_records(mismatches)
+            return no_records([*mismatches, *aside])
         return gather(held, self._stack([one.source.table.id for one in held]), mismatches)
 
     def _fit(self, source: Source, want: Wanted, block_id: str) -> Fit | Mismatch:
@@ -256,7 +267,7 @@ class Workspace:
         found = self._fit(source, want, requirement.block)
         if not isinstance(found, Mismatch) or found.kind not in IDENTITY or not is_plain(limit):
             return False
-        how = self._fit(source, replace(want, quantity=source.column.quantity), requirement.block)
+        how = self._fit(source, _of(source, want), requirement.block)
         if isinstance(how, Mismatch):
             return False
         try:
@@ -295,6 +306,12 @@ class Workspace:
             )
             self._standings[key] = found
         return found
+
+
+def _of(source: Source, want: Wanted) -> Wanted:
+    """Return what is wanted with the plane, statistic, bandwidth and polarisation that the source has."""
+    recorded = source.column.quantity
+    return replace(want, quantity=recorded.model_copy(update={"parameter": want.quantity.parameter}))
 
 
 def _coded(names: TextColumn, identify: Callable[[str], str]) -> tuple[NDArray[np.intp], tuple[str, ...]]:
