@@ -97,7 +97,7 @@ class Heading:
 
     def unit(self) -> FoundUnit:
         """The unit of the column, and where it stands."""
-        return find_unit(self.table, self.header, self.parts, self.hints.unit)
+        return find_unit(self.table, self.header, self.parts, self.hints.unit, self.said_by)
 
     def means(self, role: Role, reason: str) -> ColumnMeaning:
         """The column as one of a plain role."""
@@ -109,14 +109,14 @@ class Heading:
         question = meaning.asks(what, remedy)
         return ColumnMeaning(self.header, self.parts, Role.UNRESOLVED, what, question)
 
-    def ask_unit(self, problem: str, example: str) -> ColumnMeaning:
-        """Unresolved for want of a (known, fitting) unit."""
+    def ask_unit(self, problem: str, example: str, state: str = "") -> ColumnMeaning:
+        """Unresolved for want of a (known, fitting) unit; ``state`` is the name under which it can be stated."""
         name = self.parts.name or "name"
         remedy = (
             f'write the unit into the header ("{name} ({example or "1"})"), or unit = "..." for column '
             f"{self.letter} in a mapping (--propose-mapping writes one)"
         )
-        return self.ask(problem, remedy)
+        return self.ask(problem, remedy + (f"; or --state {state}={example}" if state and example else ""))
 
     def ask_parameter(self, problem: str, near: str = "") -> ColumnMeaning:
         """Unresolved for want of a parameter."""

@@ -32,6 +32,7 @@ from specflow.importers.measured.subject import find_block, item_name, item_note
 from specflow.importers.measured.values import column_name, read_values, with_register
 from specflow.importers.measured.words import fill_down, read_dates, read_words
 from specflow.importers.measured.work import TableWork
+from specflow.importers.measured.zero_hertz import note_zero_hertz
 from specflow.model.base import code_key
 from specflow.model.columns import TextColumn
 from specflow.model.evidence import EvidenceColumns, EvidenceTable
@@ -251,6 +252,7 @@ def _evidence(
         return None, None
     identity = Identity(block, method, stage, key, title, sheet)
     work.findings += slip_findings(work, columns, values.documents)
+    work.notes += note_zero_hertz(work, columns.conditions)
     columns, documents = by_row_kind(work, columns, values.documents)
     corrected = with_corrections(work, columns, documents)
     columns, documents = corrected.columns, corrected.values

@@ -95,7 +95,7 @@ class Stated:
     ``said`` is by the names of ``NAMES``, ``conditions`` by dimension; ``items`` are all that were named. ``columns``
     is what the person says of columns, ``uncertainties`` what is said of single quantities. ``corrected`` are
     lines that say a correction is in the readings already. ``doubts`` are questions about a condition, which are idle
-    where a column gives it row by row.
+    where a column gives it row by row. ``of_instrument``: the lines above are the settings of an instrument.
     """
 
     said: dict[str, Said] = field(default_factory=dict)
@@ -108,6 +108,7 @@ class Stated:
     readings: list[ColumnReading] = field(default_factory=list)
     questions: list[Question] = field(default_factory=list)
     doubts: dict[str, Question] = field(default_factory=dict)
+    of_instrument: bool = False
     unused: list[str] = field(default_factory=list)
 
     def text(self, name: str) -> str:
@@ -161,7 +162,7 @@ class _Collector:
     """Takes one statement after the other."""
 
     def __init__(self, own_dimensions: Collection[str], of_instrument: bool) -> None:
-        self.stated = Stated()
+        self.stated = Stated(of_instrument=of_instrument)
         self._own = own_dimensions
         self._of_instrument = of_instrument
 

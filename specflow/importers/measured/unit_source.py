@@ -33,10 +33,12 @@ class FoundUnit:
     by_cell: bool = False
 
 
-def find_unit(table: FoundTable, header: HeaderCell, parts: HeaderText, mapped: str = "") -> FoundUnit:
+def find_unit(
+    table: FoundTable, header: HeaderCell, parts: HeaderText, mapped: str = "", said_by: str = "the mapping"
+) -> FoundUnit:
     """Look for the unit: mapping, header, units row, number format, cell texts, unit column, in this order."""
     if mapped:
-        return _beside(table, header, _checked(mapped, "the mapping"))
+        return _beside(table, header, _checked(mapped, said_by))
     found = _found(table, header, parts)
     slip = slip_of(found.unit)
     return FoundUnit(problem=f"{slip}; found in {found.source}") if slip else found

@@ -56,7 +56,9 @@ def value_of(
     if not unit.unit and not unit.problem:
         unit = _stated_unit(parameter, stated)
     if not unit.unit:
-        return heading.ask_unit(unit.problem or f"{parameter.title} without a unit", parameter.unit)
+        return heading.ask_unit(
+            unit.problem or f"{parameter.title} without a unit", parameter.unit, "" if unit.problem else "unit"
+        )
     density = density_of(parameter, unit.unit, context.dictionary)
     if density is not None:
         parameter, reason = density, f"{reason}, in {unit.unit} its density"
