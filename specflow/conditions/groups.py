@@ -30,4 +30,6 @@ def grouped_rows(
             keys.append(words.codes[rows].astype(np.int64))
     _, first, group = np.unique(np.stack(keys, axis=1), axis=0, return_index=True, return_inverse=True)
     group = group.reshape(-1)
-    return [rows[group == place] for place in np.argsort(first, kind="stable")]
+    order = np.argsort(group, kind="stable")
+    parts = np.split(rows[order], np.flatnonzero(np.diff(group[order])) + 1)
+    return [parts[place] for place in np.argsort(first, kind="stable")]

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
 
 import numpy as np
@@ -24,6 +24,10 @@ from specflow.units import compatible, parse_unit
 
 Floats = NDArray[np.float64]
 Rows = NDArray[np.intp]
+
+
+#: How many results are put into words for a preview; all are stored.
+MOST_TOLD = 1000
 
 
 @dataclass(frozen=True, slots=True)
@@ -93,6 +97,7 @@ class _Gathered:
 
     outcomes: list[tuple[Rows, Outcome]] = field(default_factory=list)
     results: list[Result] = field(default_factory=list)
+    at: list[str] = field(default_factory=list)
     refused: list[Refused] = field(default_factory=list)
     notes: dict[str, None] = field(default_factory=dict)
     largest_gap: float = 0.0
@@ -151,26 +156,45 @@ def _add_group(
     if not len(group):
         return
     apart = {*axes, *rows.told_apart}
-    words = rows.words(int(group[0]), apart)
     try:
         taken, gap = _taken(request.law, rows, axes, over, group)
         outcome = request.law.function(_samples(request, rows, axes, over, taken))
-        _check_unit(request, outcome)
+        _check_outcome(request, outcome)
     except (CalculationError, UnitError) as error:
-        found.refused.append(Refused(words, error.message, error.hint))
+        found.refused.append(Refused(rows.words(int(group[0]), apart), error.message, error.hint))
         return
     found.largest_gap = max(found.largest_gap, gap)
     at = outcome.at or tuple(_place(rows, axes, over, int(taken[row])) for row in outcome.rows)
-    high = outcome.value if outcome.high is None else outcome.high
-    u = np.full(len(outcome.value), np.nan) if outcome.u is None else outcome.u
-    for place in range(len(outcome.value)):
-        found.results.append(
-            Result(
-                words, float(outcome.value[place]), float(high[place]), float(u[place]), at[place], len(taken)
-            )
-        )
+    found.at.extend(at)
+    found.results.extend(_results(found, request, rows, apart, taken, outcome, at))
     found.notes.update(dict.fromkeys(outcome.notes))
     found.outcomes.append((taken, outcome))
+
+
+def _results(
+    found: _Gathered,
+    request: Request,
+    rows: Joined,
+    apart: set[str],
+    taken: Rows,
+    outcome: Outcome,
+    at: Sequence[str],
+) -> Iterator[Result]:
+    """Give the results of a group in words, as long as people would read on."""
+    each = request.law.over == "each"
+    high = outcome.value if outcome.high is None else outcome.high
+    u = np.full(len(outcome.value), np.nan) if outcome.u is None else outcome.u
+    room = max(MOST_TOLD - len(found.results), 0)
+    words = "" if each or not room else rows.words(int(taken[0]), apart)
+    for place in range(min(len(outcome.value), room)):
+        yield Result(
+            rows.words(int(taken[outcome.rows[place]]), apart) if each else words,
+            float(outcome.value[place]),
+            float(high[place]),
+            float(u[place]),
+            at[place],
+            1 if each else len(taken),
+        )
 
 
 def _taken(
@@ -179,6 +203,8 @@ def _taken(
     """Return the rows of a group that the law reads, ascending along its range, and the largest gap."""
     has_value = rows.has_value[group]
     if law.over == "each":
+        if not has_value.any():
+            raise CalculationError("no row has a value in every column that the law reads")
         return group[has_value], 0.0
     if over is None:
         if not has_value.all():
@@ -223,7 +249,13 @@ def _refuse_repeats(along: Floats, over: SaidRange) -> None:
         )
 
 
-def _check_unit(request: Request, outcome: Outcome) -> None:
+def _check_outcome(request: Request, outcome: Outcome) -> None:
+    bad = np.isnan(outcome.value) if request.law.takes_bounds else ~np.isfinite(outcome.value)
+    if bad.any():
+        raise CalculationError(
+            f"{np.count_nonzero(bad)} of {len(outcome.value)} results are no numbers",
+            hint="look at the readings: a level of nothing, a ratio to nothing",
+        )
     own, wanted = parse_unit(outcome.unit or "1"), parse_unit(request.gives.unit or "1")
     if not compatible(own, wanted) and not (own.is_log != wanted.is_log and own.kind is wanted.kind):
         raise DocumentError(
@@ -302,7 +334,7 @@ def _columns(
     high = np.concatenate([outcome.value if outcome.high is None else outcome.high for outcome in outcomes])
     spread = [np.full(len(o.value), np.nan) if o.u is None else o.u for o in outcomes]
     u = None if all(outcome.u is None for outcome in outcomes) else np.concatenate(spread)
-    extra = {AT_COLUMN: TextColumn.of([result.at for result in found.results])}
+    extra = {AT_COLUMN: TextColumn.of(found.at)}
     if SOURCE_COLUMN in base.extra:
         extra[SOURCE_COLUMN] = base.extra[SOURCE_COLUMN].take(origin)
     return EvidenceColumns(

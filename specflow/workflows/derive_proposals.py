@@ -107,7 +107,7 @@ def _proposal(
             if preview.is_unchanged:
                 return None
             refused = len(preview.derived.refused)
-            why += f"; gives {len(preview.derived.results)} values" + (
+            why += f"; gives {preview.table.rows} values" + (
                 f", {refused} groups refused" * bool(refused)
             )
     if guessed:

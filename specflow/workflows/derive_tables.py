@@ -39,6 +39,9 @@ def preview_table(preview: DerivePreview) -> ReportTable:
         )
         for one in preview.derived.refused
     ]
+    if len(preview.derived.results) < preview.table.rows:
+        left = preview.table.rows - len(preview.derived.results)
+        rows.append(_row("more", ("", f"... and {left} more", "", "", ""), CellTone.QUIET))
     title = f"{column.quantity.parameter}: {preview.derivation.words}"
     return _table(
         "derived", title, _intro(preview), ("Item and conditions", "Value", "u", "At", "Readings"), rows

@@ -239,3 +239,39 @@ def test_settings_are_read_strictly(law: str, settings: dict[str, str], message:
 def test_ranges_are_read_strictly(over: str, message: str) -> None:
     with pytest.raises(DocumentError, match=message):
         derived_of("worst", swept(), over=over)
+
+
+def test_rows_without_a_value_in_every_column_are_left_out_and_none_is_refused() -> None:
+    kinds = {"A": {"parameter": "gain"}, "B": {"parameter": "gain"}}
+    pair = a_trace(values={"A": [np.nan, 5.0], "B": [1.0, 2.0]}, quantities=kinds, frequency=[1, 2])
+    roles = {"value": "A", "minus": "B"}
+    found = derived_of("difference", pair, pair, roles=roles, gives="gain_step")
+    assert found.columns.values["gain_step"].low.tolist() == [3]
+    none = a_trace(values={"A": [np.nan], "B": [1.0]}, quantities=kinds, frequency=[1])
+    with pytest.raises(CalculationError, match="no row has a value in every column"):
+        derived_of("difference", none, none, roles=roles, gives="gain_step")
+
+
+def test_many_groups_take_no_time_that_grows_with_their_square() -> None:
+    """20,000 sweeps of 5 readings: grouped by sorting, not by looking through all rows for each."""
+    count = 20_000
+    trace = a_trace(
+        values={"Gain": np.tile([1.0, 2, 3, 2, 1], count)},
+        frequency=np.tile([1.0, 2, 3, 4, 5], count).tolist(),
+        temperature_ambient=np.repeat(np.arange(count), 5).tolist(),
+    )
+    found = derived_of("ripple", trace, over="frequency 1..5 GHz", gives="gain_flatness")
+    assert found.columns.values["gain_flatness"].low.tolist() == [2.0] * count
+    assert len(found.results) == 1000
+
+
+def test_a_law_row_by_row_keeps_every_row() -> None:
+    count = 50_000
+    trace = a_trace(
+        values={"A": np.full(count, 3.0), "B": np.arange(count) / 1e3},
+        quantities={"A": {"parameter": "gain"}, "B": {"parameter": "gain"}},
+        frequency=np.arange(count).tolist(),
+    )
+    found = derived_of("difference", trace, trace, roles={"value": "A", "minus": "B"}, gives="gain_step")
+    assert found.columns.values["gain_step"].low == pytest.approx(3 - np.arange(count) / 1e3)
+    assert found.columns.conditions.numeric["frequency"].tolist() == list(range(count))
