@@ -12,6 +12,7 @@ from specflow.importers.bench_sheets import bench_identity, read_bench
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.document import PROVISIONAL_FILE
 from specflow.importers.measured.evidence import ReadTable, read_table
+from specflow.importers.measured.layout import sheet_pattern
 from specflow.importers.measured.located import GivenMappings, LocatedTable, Mappings, locate_tables
 from specflow.importers.measured.mapping import read_mappings, write_mapping
 from specflow.importers.measured.mapping_parts import LayoutMapping
@@ -161,7 +162,9 @@ def _read(
     table = _with_how_read(read.table, located, person)
     table = replace(table, asked=tuple(located.mapping.derive))
     if located.mapping_from:
-        table = replace(table, mapping=write_mapping(replace(located.mapping, layout=located.key)))
+        mapping = located.mapping
+        sheet_name = mapping.sheet or (sheet_pattern(located.table) if mapping.area else "")
+        table = replace(table, mapping=write_mapping(replace(mapping, layout=located.key, sheet=sheet_name)))
     return replace(read, table=table)
 
 

@@ -79,19 +79,22 @@ class _Locator:
         """Take the tables whose areas are stated; return the areas, and the mapping that says there is no more."""
         areas: list[CellRange] = []
         alone: Settled | None = None
+        found: list[tuple[CellRange, FoundTable, str, Settled]] = []
         for one in self._mappings.of_areas(self._grid):
             area = clipped(self._grid, one.mapping.area)
             table = None if area is None else table_in_area(self._grid, one.mapping, self._context.recognises)
             if area is None or table is None or any(area.touches(other) for other in areas):
                 continue
             key = layout_key(table)
-            if one.mapping.layout != key and (one.mapping.layout or not one.by_hand):
-                continue
-            if not one.by_hand and not table.has_words:
+            if not _is_meant(one, key, table):
                 continue
             areas.append(area)
             self._mappings.used.append(one.mapping)
             alone = one if one.mapping.alone else alone
+            found.append((area, table, key, one))
+        for area, table, key, one in sorted(
+            found, key=lambda each: (each[0].first_row, each[0].first_column)
+        ):
             if one.mapping.skip:
                 self.found.skipped.append(f"{self.where}, {table.place}: {one.source} says skip")
                 continue
@@ -160,6 +163,13 @@ class _Locator:
                     self._number,
                 )
             )
+
+
+def _is_meant(one: Settled, key: str, table: FoundTable) -> bool:
+    """Whether what stands in the area is the layout that the mapping was made for; one by hand may name none."""
+    if one.by_hand:
+        return one.mapping.layout in ("", key)
+    return one.mapping.layout == key and table.has_words
 
 
 def _speaks_of_tables_below(table: FoundTable) -> bool:
