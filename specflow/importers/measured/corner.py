@@ -51,9 +51,16 @@ def find_number_row(grid: Grid, top: int, stop: int, context: Context) -> Number
 def next_number_row(table: FoundTable, context: Context) -> int | None:
     """The first row below the headers of a table that is a row of numbers over another one."""
     cells = table.cells(table.headers[0].column)
+    begins: dict[Value, bool] = {}  # a column of items has a million cells and few words
     for place in np.flatnonzero(~cells.numeric[: table.stop_row - table.first_row]).tolist():
-        row = table.first_row + place
-        if row < table.grid.last_row and _number_row(table.grid, table.first_row, row, context) is not None:
+        row, value = table.first_row + place, cells.values[place]
+        if value not in begins:
+            begins[value] = is_blank(value) or is_reading(value) or _is_named(str(value), context)
+        if (
+            begins[value]
+            and row < table.grid.last_row
+            and _number_row(table.grid, table.first_row, row, context) is not None
+        ):
             return row
     return None
 
@@ -111,11 +118,16 @@ def _number_row(grid: Grid, top: int, row: int, context: Context) -> NumberRow |
             return None
     if not _is_over_numbers(grid, row, column, columns):
         return None
-    parts = [read_header(part) for part in _corner_parts(str(label))]
-    named = any(find_dimension(one.name) or is_unlocated_temperature(one.name) for one in parts)
-    if not (named or context.recognises(" ".join(str(label).split()))):
+    if not _is_named(str(label), context):
         return None
     return NumberRow(row, column, " ".join(str(label).split()), label_row, columns)
+
+
+def _is_named(label: str, context: Context) -> bool:
+    """Whether a corner says what runs down or across."""
+    parts = [read_header(part) for part in _corner_parts(label)]
+    named = any(find_dimension(one.name) or is_unlocated_temperature(one.name) for one in parts)
+    return named or context.recognises(" ".join(label.split()))
 
 
 def _label_above(grid: Grid, top: int, row: int, before: int) -> tuple[int, str, int]:
