@@ -83,9 +83,20 @@ def test_lines_in_a_spectrum_are_no_slips(seed: int) -> None:
     assert slips(spectrum, "dBm") == []
 
 
-@pytest.mark.parametrize("name", ["digitiser_gain.csv", "spillover_vs_zenith_a.dat", "hot_cold_if_power.dat",
-                                  "thermistor_mount_vs_temp.csv", "sa_zero_hz_nul.CSV", "bench_s21_mag_phase.csv",
-                                  "field_scan_sections.csv", "monopole_scan_sections.csv", "sa_three_trace.CSV"])  # fmt: skip
+@pytest.mark.parametrize(
+    "name",
+    [
+        "digitiser_gain.csv",
+        "spillover_vs_zenith_a.dat",
+        "hot_cold_if_power.dat",
+        "thermistor_mount_vs_temp.csv",
+        "sa_zero_hz_nul.CSV",
+        "sa_three_trace.CSV",
+        "bench_s21_mag_phase.csv",
+        "field_scan_sections.csv",
+        "monopole_scan_sections.csv",
+    ],
+)
 def test_no_alarm_on_published_files(name: str) -> None:
     """Measured and simulated files of others: a slip in one of them would be news to its origin."""
     path = DATA / name if (DATA / name).exists() else BESIDE / name
