@@ -31,7 +31,7 @@ from specflow.budgets.closure import Closure, closure_test
 from specflow.budgets.contribution import Contribution, contribution
 from specflow.budgets.figures import Figures
 from specflow.budgets.forms import LOSS
-from specflow.budgets.inverse_figures import figure_of_line, line_value
+from specflow.budgets.inverse_figures import figure_of_line, image_factor, line_value
 from specflow.budgets.plain_shares import share_plainly
 from specflow.budgets.probe import Probe, Target
 from specflow.calculators.decibel import gain_before
@@ -210,11 +210,11 @@ def _parts(
     figures = probe.figures({**start, **estimate})
     parts = {}
     for number in numbers:
-        row = probe.chain.lines[number].row
-        figure = figures.stages[law.figure][
-            row
-        ]  # of a mixer without the image noise, which comes from others
-        parts[number] = np.broadcast_to(law.of(figure, _front(figures, row)), (size,))
+        read = probe.chain.lines[number]
+        front = _front(figures, read.row)
+        # Of a mixer its own noise alone: what comes of the image is made in front of it.
+        own = law.of(figures.stages[law.figure][read.row], front) - image_factor(probe.chain, read) / front
+        parts[number] = np.broadcast_to(own, (size,))
     if np.any(sum(parts.values()) == 0):
         raise CalculationError(
             f"no shared position contributes to {target.name} by its estimate",
@@ -255,8 +255,9 @@ class _Growth:
         for number, part in self.parts.items():
             read = self.probe.chain.lines[number]
             front = np.ones(1) if self.fronts is None else self.fronts[read.row]
+            part = part * grown + image_factor(self.probe.chain, read) / front
             with np.errstate(divide="ignore"):
-                at_position = np.clip(self.law.figure_for(part * grown, front), -1e4, 1e4)
+                at_position = np.clip(self.law.figure_for(part, front), -1e4, 1e4)
             gain = np.zeros(1) if self.gains is None else self.gains[read.row]
             figure = figure_of_line(self.probe.chain, read, at_position, gain)
             found[number] = line_value(read, figure, self.probe.dictionary)

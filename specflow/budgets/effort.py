@@ -31,7 +31,7 @@ from specflow.budgets.apportion import plan_shares
 from specflow.budgets.chain import Overrides, ReadLine
 from specflow.budgets.closure import Closure, closure_test
 from specflow.budgets.contribution import contribution
-from specflow.budgets.inverse_figures import PORTS, line_value
+from specflow.budgets.inverse_figures import PORTS, image_factor, line_value
 from specflow.budgets.probe import Probe, line_name
 from specflow.calculators.decibel import decibels, ratio
 from specflow.errors import CalculationError, InfeasibleError
@@ -217,7 +217,8 @@ def _moved(probe: Probe, read: ReadLine, harder: float) -> Floats:
     if kind != "gain":
         figure = np.atleast_1d(figure.min() if kind in PORTS or _wants_more(probe, kind) else figure.max())
     if kind == "noise_figure":
-        moved = decibels(1.0 + (ratio(figure) - 1.0) * ratio(np.array([-harder])))
+        least = 1.0 + image_factor(probe.chain, read)
+        moved = decibels(least + (ratio(figure) - least) * ratio(np.array([-harder])))
     elif kind in PORTS or kind == "gain":
         moved = figure + harder
     elif probe.budget.law is Law.ROOT_SUM_OF_SQUARES:

@@ -118,10 +118,21 @@ def domain(chain: Chain, read: ReadLine) -> tuple[float, float]:
     return -300.0, 300.0
 
 
+def image_factor(chain: Chain, read: ReadLine) -> float:
+    """Return what the image adds to the noise factor that a line states: 1 of a mixer whose image counts, else 0.
+
+    It is none of the mixer's own noise: a noiseless one has a single-sideband factor of 2.
+    """
+    if read.role.figure != "noise_figure":
+        return 0.0
+    mixers = mixers_of(chain)
+    is_counted = mixers is not None and mixers.turns[read.row] is Turn.IMAGE
+    return 1.0 if read.line.sideband == "DSB" or is_counted else 0.0
+
+
 def _least_noise(chain: Chain, read: ReadLine) -> float:
     """Return the least noise figure of a position: that of its loss where it is passive, else 0 dB."""
-    mixers = mixers_of(chain)
-    if read.line.sideband == "DSB" or (mixers is not None and mixers.turns[read.row] is Turn.IMAGE):
+    if image_factor(chain, read):
         return LEAST_SINGLE_SIDEBAND_DB
     if not chain.positions[read.row].passive:
         return 0.0

@@ -10,6 +10,8 @@ import numpy as np
 import pytest
 
 from specflow.budgets import evaluate_budget, line_key, monte_carlo, shares_of, slopes_of, worst_case
+from specflow.budgets.apportion import apportion
+from specflow.budgets.effort import least_effort
 from specflow.budgets.solve import solve_line
 from specflow.calculators.image_noise import both_sidebands_noise_figure, image_noise_figure
 from specflow.errors import SpecflowError
@@ -27,6 +29,7 @@ from tests.builders import (
 
 DICTIONARY = load_dictionary()
 STEP = 1e-4
+GAIN = {"minus": 0.5, "plus": 0.5, "meaning": "limits", "distribution": "uniform"}
 
 
 def mixer(sideband: str, noise: float, **figures: Any) -> dict[str, Any]:
@@ -328,3 +331,37 @@ def test_a_passive_chain_in_equilibrium_makes_the_noise_of_its_temperature_at_th
     loss = 10**0.2
     expected = loss * (2 * 350.0 + 2 * 290.0 * (10**0.3 - 1))
     assert result.of("system_noise_temperature").result == pytest.approx(expected)
+
+
+@pytest.mark.parametrize("way", ["equal", "proportional"])
+def test_shares_leave_out_what_the_image_adds(way: Any) -> None:
+    """What is shared of the mixer is its own noise, 2·(F_DSB - 1): the image's is nobody's share."""
+    chain = (
+        {"block": "LNA", "gain": 15.0, "noise_figure": 2.0, "more": {"gain": {"tolerance": GAIN}}},
+        mixer("DSB", 8.0, image_rejection=20.0),
+        {"block": "IF", "gain": 20.0, "noise_figure": 4.0},
+    )
+    budget = a_chain(*chain)
+    snapshot = project_of(budget, limit=at_most(3.8))
+    found = apportion(budget, snapshot, DICTIONARY, way=way, at_nominal=True)
+    figures = {one.block: one.high for one in found.allotments if one.parameter == "noise_figure"}
+    front = {"LNA": 1.0, "MIX": 10**1.5, "IF": 10**0.9}
+
+    def own(name: str, figure: float) -> float:
+        return (2 if name == "MIX" else 1) * (10 ** (figure / 10) - 1) / front[name]
+
+    estimate = {"LNA": 2.0, "MIX": 8.0, "IF": 4.0}
+    parts = [
+        own(name, figures[name]) / (1.0 if way == "equal" else own(name, estimate[name])) for name in front
+    ]
+    assert max(parts) / min(parts) == pytest.approx(1.0, abs=0.02)
+    stages = [{**stage, "noise_figure": figures[str(stage["block"])]} for stage in chain]
+    assert noise_figure(*stages) == pytest.approx(3.8, abs=0.02)
+
+
+def test_the_least_effort_takes_a_double_sideband_figure() -> None:
+    budget = a_chain(LNA, mixer("DSB", 8.0, image_rejection=20.0))
+    found = least_effort(budget, project_of(budget, limit=at_most(2.6)), DICTIONARY)
+    figures = {one.block: one.high for one in found.allotments if one.parameter == "noise_figure"}
+    stages = ({**LNA, "noise_figure": figures["LNA"]}, mixer("DSB", figures["MIX"], image_rejection=20.0))
+    assert noise_figure(*stages) == pytest.approx(2.6, abs=0.02)
