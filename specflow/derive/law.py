@@ -88,7 +88,8 @@ class Law:
     axis value may. ``statistic``: what the result is called where it is of the same parameter as the readings ("" where
     it is a reading like the others; "{of}" takes a setting). ``brackets``: the law interpolates, so the reading beyond
     each end of the range enters, too, and the ends need only be bracketed. ``in_parts``: results over parts of a range
-    speak for the whole together. ``keeps_parameter``: without ``--gives`` the result is of the readings' parameter.
+    speak for the whole together. ``whole_table``: every value column of one table is read, each as the role of its own
+    name. ``keeps_parameter``: without ``--gives`` the result is of the readings' parameter.
     """
 
     name: str
@@ -106,6 +107,7 @@ class Law:
     brackets: bool = False
     keeps_parameter: bool = False
     in_parts: bool = False
+    whole_table: bool = False
     statistic: str = ""
     version: int = 1
 

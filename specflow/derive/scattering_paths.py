@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import re
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -22,6 +24,7 @@ _TWO = (
     "the columns of two scattering parameters from one port, of one file or of two with the same frequencies"
 )
 MOST_SCANS = 721
+_ENTRY_COLUMN = re.compile(r"^S(?:(\d)(\d)|(\d+)_(\d+)) (?P<part>\S+)$")
 
 
 def amplitude_imbalance(samples: Samples) -> Outcome:
@@ -53,10 +56,32 @@ def phase_imbalance(samples: Samples) -> Outcome:
     return row_by_row(value, "deg")
 
 
-def row_roles(ports: int) -> list[tuple[str, str]]:
-    """Return the roles of all entries of a network of n ports, row by row: "first of S1_2", "second of S1_2"."""
-    numbers = range(1, ports + 1)
-    return [(f"first of S{m}_{n}", f"second of S{m}_{n}") for m in numbers for n in numbers]
+def _matrix(samples: Samples) -> Complexes:
+    """The matrix (n, p, p) of a network table, whose columns are the roles: "S12 magnitude", "S12 angle" ..."""
+    parts: dict[tuple[int, int], dict[str, str]] = {}
+    for role in samples.values:
+        found = _ENTRY_COLUMN.match(role)
+        if found is not None:
+            to, start = (int(one) for one in found.groups()[:4] if one is not None)
+            parts.setdefault((to, start), {})[found["part"]] = role
+    ports = round(len(parts) ** 0.5)
+    every = [(m, n) for m in range(1, ports + 1) for n in range(1, ports + 1)]
+    pairs = [_pair(parts.get(one, {})) for one in every]
+    if not ports or len(parts) != ports * ports or None in pairs:
+        raise CalculationError(
+            "an active reflection needs every entry of a network",
+            hint="derive it from the table of a network file",
+        )
+    entries = [entry(samples, pair) for pair in pairs if pair is not None]
+    return np.stack(entries, axis=-1).reshape(-1, ports, ports)
+
+
+def _pair(parts: dict[str, str]) -> tuple[str, str] | None:
+    """The roles of both columns of an entry, None where it has others."""
+    for first, second in (("dB", "angle"), ("magnitude", "angle"), ("real", "imaginary")):
+        if {first, second} == set(parts):
+            return parts[first], parts[second]
+    return None
 
 
 def scan_reflection(samples: Samples) -> Outcome:
@@ -67,18 +92,13 @@ def scan_reflection(samples: Samples) -> Outcome:
     of the file none; scan in the plane of the line.
     Source: definition as in scikit-rf ``s_active``; path difference.
     """
-    ports = round((len(samples.values) / 2) ** 0.5)
-    roles = row_roles(ports)
-    if {name for pair in roles for name in pair} != set(samples.values):
-        raise CalculationError(
-            "an active reflection needs every entry of the network", hint="attach the network file with it"
-        )
+    matrix = _matrix(samples)
+    ports = matrix.shape[-1]
     if (samples.axis, parse_unit(samples.axis_unit or "1").dimension) != (
         "frequency",
         parse_unit("Hz").dimension,
     ):
         raise CalculationError(f"the axis is {samples.axis}", hint="element spacings need the frequency")
-    matrix = np.stack([entry(samples, pair) for pair in roles], axis=-1).reshape(-1, ports, ports)
     scans = _scan_angles(samples.word("scan"))
     frequency = convert(samples.along, parse_unit(samples.axis_unit), parse_unit("Hz"))
     spacing = samples.number("spacing") * frequency / LIGHT
@@ -137,6 +157,7 @@ PATH_LAWS: tuple[Law, ...] = (
         scan_reflection,
         needs="every entry of a network whose ports are the elements of a line",
         roles=(),
+        whole_table=True,
         settings=(
             Setting("spacing", "distance between neighbouring elements", None, "m"),
             Setting("scan", "the angles, as in -60..60 deg step 5 deg", None, is_text=True),

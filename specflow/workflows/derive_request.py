@@ -80,6 +80,8 @@ def request_of(
 def _roles(
     law: Law, options: DeriveOptions, tables: Sequence[EvidenceTable], arrays: Arrays
 ) -> tuple[Role, ...]:
+    if law.whole_table:
+        return _every_column(law, tables, arrays)
     said = dict(_said_role(law, place, text) for place, text in enumerate(options.values))
     by_key = {code_key(table.id): table for table in tables}
     roles = []
@@ -92,6 +94,13 @@ def _roles(
         clauses = tuple(filter(None, (part.strip() for part in where.split(" and "))))
         roles.append(Role(name, table, arrays[table.id], value.name, clauses))
     return tuple(roles)
+
+
+def _every_column(law: Law, tables: Sequence[EvidenceTable], arrays: Arrays) -> tuple[Role, ...]:
+    if len(tables) != 1:
+        raise DocumentError(f"the law {law.name} reads one whole table", hint="say --from once")
+    table = tables[0]
+    return tuple(Role(one.name, table, arrays[table.id], one.name) for one in table.values)
 
 
 def _said_role(law: Law, place: int, text: str) -> tuple[str, str]:

@@ -16,7 +16,6 @@ from specflow.derive.said import typed_settings
 from specflow.derive.samples import Range
 from specflow.derive.scattering import entry, magnitude_db
 from specflow.derive.scattering_laws import SCATTERING_LAWS
-from specflow.derive.scattering_paths import row_roles
 from specflow.errors import CalculationError
 
 UNITS = {"DB": ("dB", "deg"), "MA": ("1", "deg"), "RI": ("1", "1")}
@@ -190,8 +189,8 @@ def test_active_reflection_over_scan_as_scikit_rf_has_it() -> None:
     s = draw.uniform(-0.2, 0.2, (2, 4, 4)) + 1j * draw.uniform(-0.2, 0.2, (2, 4, 4))
     frequency, spacing = np.array([28.0, 29.0]), 0.0052
     readings: dict[str, Readings] = {}
-    for place, names in enumerate(row_roles(4)):
-        readings |= pair(s[:, place // 4, place % 4], "RI", names)
+    for m, n in np.ndindex(4, 4):
+        readings |= pair(s[:, m, n], "RI", (f"S{m + 1}{n + 1} real", f"S{m + 1}{n + 1} imaginary"))
     found = law("active reflection", readings, frequency, spacing="5.2 mm", scan="-60..60 deg step 30 deg")
     assert found.axes["scan_theta"].tolist() == [-60, -30, 0, 30, 60] * 2 and found.axis_units == {
         "scan_theta": "deg"
@@ -204,6 +203,14 @@ def test_active_reflection_over_scan_as_scikit_rf_has_it() -> None:
             expected = 20 * np.log10(np.abs(network.s_active(a)[row]).max())
             assert found.value[5 * row + place] == pytest.approx(expected)
             assert f"scan {scan} deg" in found.at[5 * row + place]
+
+
+def test_active_reflection_needs_every_entry() -> None:
+    readings = pair([0.1, 0.1], "RI", ("S11 real", "S11 imaginary")) | pair(
+        [0.1, 0.1], "RI", ("S12 real", "x")
+    )
+    with pytest.raises(CalculationError, match="every entry of a network"):
+        law("active reflection", readings, [28.0, 29.0], spacing="5 mm", scan="-60..60 deg step 30 deg")
 
 
 # --- noise

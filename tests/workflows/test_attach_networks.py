@@ -21,6 +21,8 @@ from specflow.model.derivation import Derivation
 from specflow.model.evidence import EvidenceTable, Supersession
 from specflow.store import ProjectStore, create_project
 from specflow.workflows.attach import AttachOptions, Decision, accept_attach, preview_attach
+from specflow.workflows.derive import preview_derive
+from specflow.workflows.derive_request import DeriveOptions
 from specflow.workflows.evaluate_project import evaluate_project
 from specflow.workflows.found_files import find_files
 from specflow.workflows.trace import trace
@@ -209,3 +211,31 @@ def test_the_register_gives_derived_quantities_their_uncertainty(store: ProjectS
     assert (u[inside] == 0.04).all() and np.isnan(u[~inside]).all()
     with pytest.raises(DocumentError, match="does not say of which entries"):
         attached(store, DATA / "lowpass_125c.s2p", uncertainty="0.1 dB (k=2)", **FILTER)
+
+
+def test_active_reflection_over_scan_is_derived_from_all_entries_and_again(store: ProjectStore) -> None:
+    scan = a_dimension("scan_theta", "deg", span=Span(low=-60.0, high=60.0, step=30.0), tolerance=0.0)
+    frequency = a_dimension(
+        span=Span(low=3.6, high=3.8, step=0.02), tolerance=0.0, text="3.6 to 3.8 GHz step 0.02 GHz"
+    )
+    conditions = a_conditions_set("ARRAY", frequency, scan)
+    requirement = a_requirement(
+        "R-AR", block="FIL", quantity=a_quantity("active_reflection"), limit=at_most(10), conditions="ARRAY"
+    )
+    store.apply(adding(conditions, requirement), by="A. B.")
+    said = {"block": "FIL", "item": "FIL-7", "spacing": "40 mm", **PORTS}
+    done = attached(store, DATA / "ten_port_sim.s10p", **said)
+    assert list(done.tables) == ["EV-1", "EV-2", "EV-3"]  # raw, active reflection, insertion loss
+    snapshot = store.load()
+    columns = snapshot.load_columns(["EV-2"])["EV-2"]
+    assert columns.conditions.size == 11 * 5 and columns.conditions.units["scan_theta"] == "deg"
+    status = status_of(store, "R-AR")
+    assert (status.k, status.n) == (1, 1)
+
+    [derivation] = snapshot.all(Derivation)
+    said = {one.name: one.text for one in derivation.settings}
+    options = DeriveOptions(
+        "active reflection", ["EV-1"], (), derivation.over, settings=said, requirement="R-AR"
+    )
+    again = preview_derive(store, options)
+    assert again.is_unchanged and again.stored_as == "EV-2"

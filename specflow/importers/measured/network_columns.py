@@ -57,11 +57,7 @@ class NetworkTable:
         if self.is_noise:
             return tuple(zip(_NOISE_ROLES, _NOISE_NAMES, strict=True))
         if len(entries) > 2:
-            return tuple(
-                (f"{role} of S{i + 1}_{j + 1}", name)
-                for i, j in entries
-                for role, name in zip(_ONE_ENTRY, self.pairs[i, j], strict=True)
-            )
+            return tuple((name, name) for entry in entries for name in self.pairs[entry])
         names = [name for entry in entries for name in self.pairs[entry]]
         return tuple(zip((*_ONE_ENTRY, *_OTHER_ENTRY), names, strict=False))
 
