@@ -207,16 +207,16 @@ class Grid:
         Returns float64, shape (stop - start,), NaN where there is no plain number, and the row numbers whose cell
         holds something that is not a plain finite number: text, date, boolean, error, formula without a value, NaN,
         infinity. Blank cells are NaN and are not listed. Number formats (percent, unit) are not applied: ask ``odd``.
+        The array may be the grid's own, and is then locked.
         """
         numbers, other = self._plain_numbers(column, start, stop)
-        finite = np.isfinite(numbers)
         bad = set((np.flatnonzero(other) + start).tolist())
         for run in self.odd.in_column(column, start, stop):
             if run.cell.kind in (OddKind.ERROR, OddKind.NO_VALUE):
-                rows = range(max(run.first, start), min(run.last + 1, stop))
-                bad.update(rows)
-                finite[rows.start - start : rows.stop - start] = False
-        numbers[~finite] = np.nan
+                bad.update(range(max(run.first, start), min(run.last + 1, stop)))
+        if bad:
+            numbers = numbers.copy()
+            numbers[np.array(sorted(bad)) - start] = np.nan
         return numbers, sorted(bad)
 
     def _plain_numbers(

@@ -18,7 +18,7 @@ from specflow.errors import FileError
 from specflow.importers.readers.delimiter import BLANKS, SAMPLE_LINES, Layout
 from specflow.importers.readers.grid import Grid, text_floats
 from specflow.importers.readers.source import Source
-from specflow.importers.readers.stores import CellStore, Flags, Floats, Value
+from specflow.importers.readers.stores import CellStore, Flags, Floats, Value, locked
 from specflow.importers.readers.text_rows import TextLines
 
 FindLayout = Callable[[Source, list[str], set[int]], Layout]
@@ -219,7 +219,7 @@ class TextColumns(CellStore):
     def numbers(self, place: int, start: int, stop: int) -> tuple[Floats, Flags] | None:
         if place >= len(self._numbers):
             return None
-        return self._numbers[place, start:stop].copy(), self._other[place, start:stop].copy()
+        return locked(self._numbers[place, start:stop]), self._other[place, start:stop]
 
     def has_numbers(self, place: int, start: int, stop: int) -> bool:
         return False

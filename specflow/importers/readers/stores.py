@@ -46,8 +46,8 @@ class CellStore(Sequence[list[Value]]):
 
     @abstractmethod
     def numbers(self, place: int, start: int, stop: int) -> tuple[Floats, Flags] | None:
-        """The plain numbers of a column as a copy, NaN elsewhere, and which cells hold something else; None where
-        the store does not know without looking at each cell."""
+        """The plain numbers of a column, NaN elsewhere, and which cells hold something else; None where the store does
+        not know without looking at each cell. The arrays may be the store's own: they are not to be changed."""
 
     @abstractmethod
     def has_numbers(self, place: int, start: int, stop: int) -> bool:
@@ -164,7 +164,7 @@ class TypedColumns(CellStore):
     def numbers(self, place: int, start: int, stop: int) -> tuple[Floats, Flags]:
         count = stop - start
         column = self._columns[place] if place < self.width else TypedColumn(None, None)
-        numbers = np.full(count, np.nan) if column.numbers is None else column.numbers[start:stop].copy()
+        numbers = np.full(count, np.nan) if column.numbers is None else locked(column.numbers[start:stop])
         other = np.isinf(numbers)
         if column.codes is not None:
             other |= ~self._blank[column.codes[start:stop]]
@@ -175,3 +175,10 @@ class TypedColumns(CellStore):
         if column.numbers is not None and not np.isnan(column.numbers[start:stop]).all():
             return True
         return column.codes is not None and not bool(self._text[column.codes[start:stop]].all())
+
+
+def locked(array: Floats) -> Floats:
+    """A view that nobody can write into."""
+    view = array.view()
+    view.flags.writeable = False
+    return view
