@@ -31,7 +31,8 @@ from specflow.budgets.closure import Closure, closure_test
 from specflow.budgets.contribution import Contribution, contribution
 from specflow.budgets.figures import Figures
 from specflow.budgets.forms import LOSS
-from specflow.budgets.inverse_figures import figure_of_line, image_factor, line_value
+from specflow.budgets.growth import Growth, one_number
+from specflow.budgets.inverse_figures import image_factor
 from specflow.budgets.plain_shares import share_plainly
 from specflow.budgets.probe import Probe, Target
 from specflow.calculators.decibel import gain_before
@@ -99,8 +100,9 @@ def apportion(
                 probe, target, numbers, _ends(probe, known, at_nominal), way, by_conditions=by_conditions
             )
         else:
-            found, said = _shared(probe, target, law, numbers, _ends(probe, known, at_nominal), way)
-        shares += found if by_conditions else [_one_number(one) for one in found]
+            ends = _ends(probe, known, at_nominal)
+            found, said = _shared(probe, target, law, numbers, ends, way, by_conditions=by_conditions)
+        shares += found
         binding += said
         known |= {one.key: one for one in map(rounded_safely, joined(shares, f"budget {budget.id}"))}
     closure = closure_test(probe, known)
@@ -174,6 +176,8 @@ def _shared(
     numbers: Sequence[int],
     ends: list[Ends | None],
     way: Way,
+    *,
+    by_conditions: bool,
 ) -> tuple[list[Allotment], list[str]]:
     """Share one limit: all contributions grow together from nothing until the margin is gone."""
     for number in numbers:
@@ -184,12 +188,14 @@ def _shared(
         corner = worst_corner(probe, target, ends, changes)
         start = dict(enumerate(corner.values))
         parts = _parts(probe, law, numbers, start, way, target)
-        growth = _Growth.of(probe, law, start, parts)
+        growth = Growth.of(probe, law, start, parts)
         before, scale = scale, _scale(probe, target, growth, start)
         changes = growth.values(scale)
         if np.allclose(before, scale, rtol=0, atol=1e-9):
             break
     words = f"{way} share of {target.name}"
+    if not by_conditions:
+        changes = one_number(probe, target, law, start, changes, is_equal=way == "equal")
     found = [_allotment(probe, number, value, law.at_most, words) for number, value in changes.items()]
     return found, [_binding(probe, number, value, target, law.at_most) for number, value in changes.items()]
 
@@ -230,41 +236,7 @@ def _front(figures: Figures, row: int) -> Floats:
     return np.ones(1) if gain is None else np.asarray(gain_before(gain)[row])
 
 
-@dataclass(frozen=True, slots=True, eq=False)
-class _Growth:
-    """How the shared lines grow together: the gains in front of them stand still meanwhile."""
-
-    probe: Probe
-    law: Contribution
-    parts: dict[int, Floats]
-    gains: Floats | None
-    fronts: Floats | None
-
-    @classmethod
-    def of(
-        cls, probe: Probe, law: Contribution, start: dict[int, Floats], parts: dict[int, Floats]
-    ) -> _Growth:
-        """Return the growth from what the other lines stand at."""
-        gains = probe.figures(start).arrays.get("gain")
-        return cls(probe, law, parts, gains, None if gains is None else gain_before(gains))
-
-    def values(self, scale: Floats) -> dict[int, Floats]:
-        """Return the values of the shared lines for a scale (n,) in decades."""
-        grown = 10.0**scale
-        found = {}
-        for number, part in self.parts.items():
-            read = self.probe.chain.lines[number]
-            front = np.ones(1) if self.fronts is None else self.fronts[read.row]
-            part = part * grown + image_factor(self.probe.chain, read) / front
-            with np.errstate(divide="ignore"):
-                at_position = np.clip(self.law.figure_for(part, front), -1e4, 1e4)
-            gain = np.zeros(1) if self.gains is None else self.gains[read.row]
-            figure = figure_of_line(self.probe.chain, read, at_position, gain)
-            found[number] = line_value(read, figure, self.probe.dictionary)
-        return found
-
-
-def _scale(probe: Probe, target: Target, growth: _Growth, start: dict[int, Floats]) -> Floats:
+def _scale(probe: Probe, target: Target, growth: Growth, start: dict[int, Floats]) -> Floats:
     """Return the greatest scale (n,), in decades, at which the margin is not gone; everywhere by itself."""
     row = probe.targets.index(target)
 
@@ -304,12 +276,6 @@ def _allotment(probe: Probe, number: int, value: Floats, at_most: bool, words: s
         words,
     )
     return blank.by_place(-open_side, value) if is_upper else blank.by_place(value, open_side)
-
-
-def _one_number(one: Allotment) -> Allotment:
-    """Return a share as one number that holds at all places: the tightest."""
-    low, high = one.ends(1)
-    return one.by_place(low.max(keepdims=True), high.min(keepdims=True))
 
 
 def _binding(probe: Probe, number: int, value: Floats, target: Target, at_most: bool) -> str:

@@ -17,9 +17,18 @@ from specflow.budgets.evaluate import evaluate_budget
 from specflow.calculators.apportionment import equal_share_iip3, equal_share_noise_figures, proportional_iip3
 from specflow.errors import CalculationError, InfeasibleError
 from specflow.model.budget import Budget
+from specflow.model.budget_line import Drift
 from specflow.parameters import load_dictionary
 from tests.budgets.chains import a_chain, project_of
-from tests.builders import a_quantity, a_requirement, at_least, at_most, between
+from tests.builders import (
+    a_conditions_set,
+    a_dimension,
+    a_quantity,
+    a_requirement,
+    at_least,
+    at_most,
+    between,
+)
 
 DICTIONARY = load_dictionary()
 GAINS = (18.0, -2.5, -7.0, 20.0)
@@ -252,3 +261,29 @@ def test_sides_are_rounded_as_on_paper(value: float, is_log: bool, up: bool) -> 
     step = Decimal("0.01") if is_log else Decimal(10) ** (exact.adjusted() - 3)
     expected = (exact / step).to_integral_value(ROUND_CEILING if up else ROUND_FLOOR) * step
     assert (found.low if up else found.high) == pytest.approx(float(expected), rel=1e-12, abs=1e-12)
+
+
+@pytest.mark.parametrize("way", ["equal", "proportional"])
+def test_one_number_for_all_conditions_asks_for_nothing_in_vain(way: Any) -> None:
+    """A gain and a noise figure that drift: by hand, F_i - 1 in proportion to the estimates in the heat, scaled."""
+    gain = Drift(dimension="temperature_ambient", dimension_unit="°C", slope=-0.05, reference=25.0)
+    noise = gain.model_copy(update={"slope": 0.01})
+    budget = a_chain(
+        {"block": "A", "gain": 15.0, "noise_figure": 1.5, "more": {
+            "gain": {"drifts": (gain,)}, "noise_figure": {"drifts": (noise,)}}},
+        {"block": "B", "gain": 10.0, "noise_figure": 8.0},
+        conditions="CS",
+    )  # fmt: skip
+    air = a_conditions_set("CS", a_dimension("temperature_ambient", "°C", values=(-35.0, 25.0, 85.0)))
+    found = apportion(budget, project_of(budget, air, limit=at_most(4)), DICTIONARY, way=way, at_nominal=True)
+    first, second = (
+        next(one.high for one in found.allotments if (one.block, one.parameter) == (name, "noise_figure"))
+        for name in "AB"
+    )
+    own, behind = 10 ** (first / 10) - 1, 10 ** (second / 10) - 1
+    hot = 10 ** ((15.0 - 3.0) / 10)
+    assert 10 * math.log10(1 + own + behind / hot) == pytest.approx(4.0, abs=0.01)
+    if way == "equal":
+        assert own == pytest.approx(behind / hot, rel=0.01)
+    else:
+        assert own / (10**0.21 - 1) == pytest.approx(behind / (10**0.8 - 1), rel=0.01)
