@@ -71,7 +71,9 @@ class TextLines:
             if not row or place + 1 in self.comments:
                 continue
             line = self._lines[place].strip()
-            if layout.delimiter == BLANKS:
+            if layout.delimiter == BLANKS and _KEY_LINE.match(line):
+                rows[place] = [line]  # "DUT: SN 12" has as many words as the table has columns, by chance
+            elif layout.delimiter == BLANKS:
                 if len(row) != layout.width or any(str(field).endswith(",") for field in row):
                     parted = split_to_width(line, layout.width, single_blanks=True)
                     rows[place] = list(parted or _words(line, row))
@@ -92,6 +94,9 @@ class TextLines:
         if len(parted) > 1:
             for place, fields in parted.items():
                 rows[place] = list(fields)
+
+
+_KEY_LINE = re.compile(r"[^\W\d_][^:=,;0-9]{0,40}[:=]\s*\S")
 
 
 def _other_section(line: str, row: list[Value], delimiter: str) -> list[str] | None:
