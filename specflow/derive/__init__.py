@@ -18,6 +18,7 @@ from __future__ import annotations
 from specflow.derive.cuts import CUT_LAWS
 from specflow.derive.edges import EDGE_LAWS
 from specflow.derive.law import Law, Outcome, Setting
+from specflow.derive.masks import MASK_LAWS
 from specflow.derive.phase_noise import PHASE_NOISE_LAWS
 from specflow.derive.pointwise import POINTWISE_LAWS
 from specflow.derive.power_sweep import SWEEP_LAWS
@@ -34,6 +35,7 @@ LAWS: tuple[Law, ...] = (
     *POINTWISE_LAWS,
     *SWEEP_LAWS,
     *PHASE_NOISE_LAWS,
+    *MASK_LAWS,
     *CUT_LAWS,
     *SPHERE_LAWS,
     *SCATTERING_LAWS,

@@ -119,7 +119,8 @@ def off_axis(samples: Samples) -> Outcome:
 
     Formula: great-circle angle between the direction of the reading and (``polar``, ``turn``); the value stays.
     Valid: the commanded direction, not the peak found: a beam that points wrong is judged where it should point. With
-    ``as`` theta the angle takes the place of the direction, for a mask over θ from the beam.
+    ``as`` theta the angle takes the place of the direction, for a mask over θ from the beam. Attach the raw pattern as
+    EIRP density, and give off-axis EIRP density: raw readings of the latter state no angle and leave a mask undecided.
     Source: off-axis angle of an earth station, ITU-R S.524 and national masks (from memory).
     """
     pair = next(one for one in DIRECTION_PAIRS if one.polar in samples.axes)
@@ -180,6 +181,8 @@ CUT_LAWS: tuple[Law, ...] = (
             Setting("turn", "commanded azimuthal angle, as '0 deg'", unit="deg"),
             Setting("as", "the condition that the angle is recorded as", OFF_AXIS, is_text=True),
         ),
+        gives=("off_axis_eirp_density",),
+        reads=("eirp_density",),
         keeps_parameter=True,
         takes_bounds=True,
     ),

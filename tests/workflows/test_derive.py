@@ -11,6 +11,7 @@ import numpy as np
 import pytest
 
 from specflow.errors import DocumentError
+from specflow.limits import parse_limit
 from specflow.model.conditions import Span
 from specflow.model.derivation import Derivation
 from specflow.model.evidence import EvidenceTable, Supersession, Withdrawal
@@ -411,3 +412,52 @@ def test_a_file_attached_again_does_not_replace_what_was_derived_from_it(
     mapping.write_text(MAPPING.replace('block = "LNA"', 'block = "LNA"\nset_up = "two"'), encoding="utf-8")
     again = preview_attach(store, path, AttachOptions(mapping=mapping))
     assert {one.earlier for found in again.replacements.values() for one in found} == {"EV-1"}
+
+
+def test_an_off_axis_mask_is_judged_from_the_commanded_direction(store: ProjectStore) -> None:
+    """A beam commanded to θ 30° that points there: its mask holds from there, not from boresight."""
+    theta = np.arange(0.0, 60.1, 0.25)
+    density = 20 - 25 * np.log10(np.maximum(np.abs(theta - 30), 1))  # dBW/40 kHz, falling from the beam
+    mask = parse_limit("mask(off_axis_angle[deg], max dBW/40 kHz: 2..7: 13 to -1 log; 7..30: 0 to -16 log)")
+    raw, columns = a_trace(
+        "T-8",
+        {"Density": density.tolist()},
+        quantities={"Density": {"parameter": "eirp_density"}},
+        units={"Density": "dBW/40 kHz"},
+        theta=theta.tolist(),
+        phi=np.zeros(len(theta)).tolist(),
+    )
+    requirement = a_requirement(
+        "R-8", quantity=a_quantity("off_axis_eirp_density"), limit=mask, conditions=None
+    )
+    store.apply(adding(requirement, raw), columns={"T-8": columns}, by="A. B.")
+    assert status(store, "R-8").k == 0  # the raw density is one over directions, not off the axis
+    options = DeriveOptions(
+        "off axis", ("T-8",), settings={"polar": "30 deg", "turn": "0 deg"}, gives="off_axis_eirp_density"
+    )
+    accept_derive(store, preview_derive(store, options), by="A. B.")
+    found = status(store, "R-8")
+    assert (found.k, found.n, found.verdict) == (1, 1, Verdict.PASS)
+    wrong = DeriveOptions(
+        "off axis", ("T-8",), settings={"polar": "25 deg", "turn": "0 deg"}, gives="off_axis_eirp_density"
+    )
+    accept_derive(store, preview_derive(store, wrong), by="A. B.")
+    assert status(store, "R-8").verdict is Verdict.FAIL
+
+
+def test_a_newer_version_of_a_law_is_a_reason_to_derive_again(
+    store: ProjectStore, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    from dataclasses import replace
+
+    from specflow.derive import LAW_BY_NAME
+
+    derived(store, "ripple", requirement="R-1")
+    monkeypatch.setitem(LAW_BY_NAME, "ripple", replace(LAW_BY_NAME["ripple"], version=2))
+    [again] = preview_again(store, DAY)
+    assert again.why == "the law ripple is at version 2, it was derived by version 1"
+    stored, left = derive_again(store, DAY, by="A. B.")
+    assert [one.superseded for one in stored] == ["EV-1"] and not left
+    third = store.load().find(Derivation, "DV-2")
+    assert third is not None and third.law_version == 2
+    assert not preview_again(store, DAY)
