@@ -9,11 +9,11 @@ from numpy.typing import NDArray
 
 from specflow.calculators.active_reflection import active_reflection, line_excitation
 from specflow.calculators.decibel import LIGHT
+from specflow.conditions import parse_dimension
 from specflow.derive.law import Law, Outcome, Setting
-from specflow.derive.said import read_over
 from specflow.derive.samples import Samples
 from specflow.derive.scattering import ENTRY, entry, magnitude_db, row_by_row
-from specflow.errors import CalculationError
+from specflow.errors import CalculationError, ConditionsError
 from specflow.units import convert, parse_unit
 
 Floats = NDArray[np.float64]
@@ -125,11 +125,18 @@ def scan_reflection(samples: Samples) -> Outcome:
 
 
 def _scan_angles(text: str) -> Floats:
-    """The angles of "-60..60 step 5 deg"."""
-    said = read_over(f"scan_theta: {text}")
-    span = said.range
-    if span.step is None:
-        raise CalculationError(f"the scan {text!r} states no step", hint="write it as -60..60 deg step 5 deg")
+    """The angles in degrees of "-60..60 deg step 5 deg", or of "-60, -30, 0, 30, 60 deg"."""
+    try:
+        said = parse_dimension(f"scan_theta: {text}", corners=False)
+    except ConditionsError as error:
+        raise CalculationError(error.message, where="scan", hint=error.hint) from None
+    if said.values:
+        return np.asarray(said.values, np.float64)
+    span = said.span
+    if span is None or span.step is None:
+        raise CalculationError(
+            f"the scan {text!r} names no angles", hint="write -60..60 deg step 5 deg, or -60, 0, 60 deg"
+        )
     count = int(np.floor((span.high - span.low) / span.step + 1e-9)) + 1
     if count > MOST_SCANS:
         raise CalculationError(f"the scan has {count} angles", hint=f"at most {MOST_SCANS}")

@@ -195,6 +195,11 @@ def test_active_reflection_over_scan_as_scikit_rf_has_it() -> None:
     assert found.axes["scan_theta"].tolist() == [-60, -30, 0, 30, 60] * 2 and found.axis_units == {
         "scan_theta": "deg"
     }
+    listed = law("active reflection", readings, frequency, spacing="5.2 mm", scan="-60, -30, 0, 30, 60 deg")
+    assert listed.value.tolist() == found.value.tolist()
+    for bad in ("-60..60 deg", "wide"):
+        with pytest.raises(CalculationError):
+            law("active reflection", readings, frequency, spacing="5.2 mm", scan=bad)
     network = skrf.Network(f=frequency * 1e9, s=s, z0=50)
     for row in range(2):
         for place, scan in enumerate((-60, -30, 0, 30, 60)):

@@ -151,6 +151,8 @@ def _span(requirement: Requirement, context: Context, name: str) -> str:
     """The range of a dimension that a requirement speaks of, as a law takes it, "" where it has none."""
     conditions = context.snapshot.find(ConditionsSet, requirement.conditions)
     for dimension in conditions.dimensions if conditions else ():
+        if dimension.name == name and dimension.values and name != "frequency":
+            return f"{name}: {', '.join(repr(value) for value in dimension.values)} {dimension.unit}"
         if dimension.name == name and dimension.span is not None:
             span = dimension.span
             step = (
@@ -255,7 +257,7 @@ def _active(wish: _Wish, ports: Ports, _: bool) -> Plan:
     if not wish.spacing:
         raise _NotPlanned('the spacing of the elements is not said (--state "spacing=5 mm")')
     if not wish.scan:
-        raise _NotPlanned("its conditions name no range of scan_theta with a step")
+        raise _NotPlanned("its conditions name no angles of scan_theta")
     entries = tuple((i, j) for i in range(len(ports.names)) for j in range(len(ports.names)))
     settings = {"spacing": wish.spacing, "scan": wish.scan.partition(": ")[2]}
     return Plan("active reflection", wish.quantity, entries, wish.why, WHOLE, settings=settings)
