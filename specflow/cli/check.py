@@ -25,6 +25,15 @@ RuleOption = Annotated[
     ),
 ]
 
+GateOption = Annotated[
+    str,
+    typer.Option(
+        "--gate",
+        metavar="NAME",
+        help="Weigh the findings as the policy has it for this review gate (CDR).",
+        show_default=False,
+    ),
+]
 ExplainOption = Annotated[bool, typer.Option("--explain", help="Also say why each matters and what to do.")]
 
 
@@ -32,6 +41,7 @@ def check(
     project: ProjectOption = "",
     at_or_above: ThresholdOption = "warning",
     rule: RuleOption = None,
+    gate: GateOption = "",
     explain: ExplainOption = False,
     as_of: AsOfOption = "",
     as_json: JsonOption = False,
@@ -39,13 +49,14 @@ def check(
     """List the findings of the rules.
 
     Worst first; each says what it is about, what was found and where. The exit code is 1 when a finding is at or above
-    the threshold, else 0. "specflow rules CODE" explains a rule.
+    the threshold, else 0. "specflow rules CODE" explains a rule. How a rule weighs, in general or at a review gate, is
+    project data: rows "Severity of CODE" and "Severity of CODE at GATE" on the sheet Project.
     """
     from specflow.cli.tables import put_table
     from specflow.workflows.check import check_project
 
     with open_store(project, read_only=True) as store:
-        checked = check_project(store, judged_on(as_of), at_or_above=at_or_above, rules=rule or ())
+        checked = check_project(store, judged_on(as_of), at_or_above=at_or_above, rules=rule or (), gate=gate)
     if as_json:
         put_json(checked.data)
     elif checked.findings:

@@ -105,9 +105,11 @@ RULES: tuple[Rule, ...] = (
 RULE_BY_CODE = {rule.code: rule for rule in RULES}
 
 
-def run_rules(snapshot: Snapshot, results: Results, dictionary: Dictionary) -> list[Finding]:
-    """Return all findings about a snapshot and what was computed from it, worst first."""
-    return run(RULES, snapshot, results, dictionary)
+def run_rules(
+    snapshot: Snapshot, results: Results, dictionary: Dictionary, *, gate: str = ""
+) -> list[Finding]:
+    """Return all findings about a snapshot and what was computed from it, worst first; as they weigh at a ``gate``."""
+    return run(RULES, snapshot, results, dictionary, gate)
 
 
 __all__ = ["RULES", "RULE_BY_CODE", "Rule", "run_rules"]

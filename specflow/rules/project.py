@@ -22,12 +22,14 @@ def unknown_rule_named(facts: Facts) -> Iterator[Found]:
     Do: correct the name; "specflow rules" lists them all.
     """
     project = facts.snapshot.project
-    known = {*Severity, OFF}
-    for rule, severity in project.policy.severities.items():
-        if code_key(rule) not in facts.codes:
-            yield Found(project.id, f"the policy sets the severity of {rule!r}, which is no rule")
-        elif severity not in known:
-            yield Found(project.id, f"the policy sets {rule} to {severity!r}, which is no severity")
+    tables = {"": project.policy.severities, **project.policy.gates}
+    for gate, severities in tables.items():
+        at = f" at {gate}" if gate else ""
+        for rule, severity in severities.items():
+            if code_key(rule) not in facts.codes:
+                yield Found(project.id, f"the policy sets the severity of {rule!r}{at}, which is no rule")
+            elif severity not in {*Severity, OFF}:
+                yield Found(project.id, f"the policy sets {rule} to {severity!r}{at}, which is no severity")
     for disposition in facts.snapshot.all(Disposition):
         if code_key(disposition.rule) not in facts.codes:
             message = f"disposes of {disposition.rule!r}, which is no rule"

@@ -17,11 +17,16 @@ from specflow.rules.project import OFF
 Dispositions = Mapping[tuple[str, str], Disposition]
 
 
-def run(rules: Sequence[Rule], snapshot: Snapshot, results: Results, dictionary: Dictionary) -> list[Finding]:
-    """Return what the rules find, worst first, then in the order of subjects, then as the rules stand."""
+def run(
+    rules: Sequence[Rule], snapshot: Snapshot, results: Results, dictionary: Dictionary, gate: str = ""
+) -> list[Finding]:
+    """Return what the rules find, worst first, then in the order of subjects, then as the rules stand.
+
+    Each weighs as the policy has it, at a review ``gate`` where one is named.
+    """
     facts = Facts(snapshot, results, dictionary, frozenset(rule.code for rule in rules))
     settled = _settled(snapshot.all(Disposition), facts.as_of)
-    wanted = {code_key(code): word for code, word in snapshot.project.policy.severities.items()}
+    wanted = snapshot.project.policy.severities_at(gate)
     found: list[Finding] = []
     for rule in rules:
         severity = _severity(rule, wanted)

@@ -11,6 +11,7 @@ from typing import Any
 from specflow.errors import SpecflowError
 from specflow.model.base import code_key
 from specflow.model.finding import Finding, Severity
+from specflow.model.project import Policy
 from specflow.model.report import ReportTable
 from specflow.reports.findings import findings_table
 from specflow.store import ProjectStore
@@ -25,6 +26,7 @@ class Checked:
     project: str
     revision: int
     as_of: str
+    gate: str
     findings: Sequence[Finding]
     threshold: Severity
 
@@ -44,7 +46,8 @@ class Checked:
         """The totals in a sentence."""
         counts = ", ".join(f"{count} {severity}" for severity, count in self.totals.items())
         at = f"{self.grave} at {self.threshold.value} or above"
-        return f"{len(self.findings)} findings ({counts}); {at}; judged as of {self.as_of}"
+        gate = f" for {self.gate}" if self.gate else ""
+        return f"{len(self.findings)} findings ({counts}); {at}; judged as of {self.as_of}{gate}"
 
     @property
     def table(self) -> ReportTable:
@@ -58,6 +61,7 @@ class Checked:
             "project": self.project,
             "project_revision": self.revision,
             "as_of": self.as_of,
+            "gate": self.gate,
             "at_or_above": self.threshold.value,
             "grave": self.grave,
             "totals": dict(self.totals),
@@ -66,18 +70,37 @@ class Checked:
 
 
 def check_project(
-    store: ProjectStore, as_of: date, *, at_or_above: str = "warning", rules: Sequence[str] = ()
+    store: ProjectStore,
+    as_of: date,
+    *,
+    at_or_above: str = "warning",
+    rules: Sequence[str] = (),
+    gate: str = "",
 ) -> Checked:
     """Return what the rules find in a project as of a date, of all rules or of those named.
 
-    SpecflowError for a severity or a rule that there is not.
+    With a review ``gate`` they weigh as the policy has it there. SpecflowError for a severity, a rule or a gate that
+    there is not.
     """
     threshold = _severity(at_or_above)
     wanted = codes_of_rules(rules)
     evaluation = evaluate_project(store, as_of)
-    findings = [finding for finding in evaluation.findings if not wanted or finding.rule in wanted]
     snapshot = evaluation.snapshot
-    return Checked(snapshot.project.name, snapshot.revision, as_of.isoformat(), findings, threshold)
+    named = _gate(gate, snapshot.project.policy) if gate else ""
+    findings = [one for one in evaluation.findings_at(named) if not wanted or one.rule in wanted]
+    return Checked(snapshot.project.name, snapshot.revision, as_of.isoformat(), named, findings, threshold)
+
+
+def _gate(text: str, policy: Policy) -> str:
+    """Return a review gate as the policy spells it."""
+    for known in policy.gates:
+        if code_key(known) == code_key(text):
+            return known
+    known_gates = f"gates: {', '.join(policy.gates)}; " if policy.gates else ""
+    raise SpecflowError(
+        f"the policy says nothing of a gate {text!r}",
+        hint=f"{known_gates}a row 'Severity of RULE at {text}' on the sheet Project says how a rule weighs there",
+    )
 
 
 def _severity(text: str) -> Severity:

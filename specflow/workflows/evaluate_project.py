@@ -28,10 +28,14 @@ class Evaluation:
     @cached_property
     def findings(self) -> Sequence[Finding]:
         """What the rules report, worst first."""
+        return self.findings_at("")
+
+    def findings_at(self, gate: str) -> Sequence[Finding]:
+        """Return what the rules report, worst first, as it weighs at a review gate."""
         # Status needs neither the rules nor the budgets; loading them only here keeps it quick.
         from specflow.rules import run_rules
 
-        return run_rules(self.snapshot, self._with_budgets(), self.dictionary)
+        return run_rules(self.snapshot, self._with_budgets(), self.dictionary, gate=gate)
 
     def _with_budgets(self) -> Results:
         if not self.snapshot.all(Budget):

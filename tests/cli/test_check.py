@@ -55,6 +55,22 @@ def test_only_the_rules_named_are_shown_and_counted(command: Command) -> None:
     assert (quiet.code, quiet.out) == (ExitCode.CLEAN, "")
 
 
+def test_at_a_gate_findings_weigh_as_the_policy_has_it_there(command: Command, project: Path) -> None:
+    refused = command("check", "--gate", "CDR")
+    assert refused.code == ExitCode.BAD_INPUT and "the policy says nothing of a gate 'CDR'" in refused.err
+    settings = [
+        {"Name": "Severity of not-planned at CDR", "Value": "error"},
+        {"Name": "Severity of no-conditions at CDR", "Value": "info"},
+    ]
+    assert (
+        command("load", project_workbook(project / "p.xlsx", project=settings), "--yes").code
+        == ExitCode.CLEAN
+    )
+    at = command("check", "--gate", "cdr", "--at-or-above", "error")
+    assert at.code == ExitCode.FINDINGS and "(1 error, 0 warning, 1 info)" in at.err and " for CDR" in at.err
+    assert command("check", "--at-or-above", "error").code == ExitCode.CLEAN
+
+
 @pytest.mark.usefixtures("project")
 def test_explaining_adds_why_and_what_to_do(command: Command) -> None:
     assert "Plan an activity" not in command("check").out

@@ -75,12 +75,13 @@ _PLAIN: Mapping[str, tuple[type[Document], Callable[[Fields], Fields]]] = {
 SECTIONS = (*_PLAIN, "as_of", "project", "conditions", "declared", "requirements", "activities", "evidence")
 
 
-def findings_of(description: Fields) -> list[Finding]:
+def findings_of(description: Fields, *, gate: str = "") -> list[Finding]:
     """Return what the rules report about a described project."""
     snapshot, as_of = described(description)
     dictionary = load_dictionary()
     results = evaluate(snapshot, dictionary, as_of=as_of)
-    return run_rules(snapshot, replace(results, budgets=budget_standings(snapshot, dictionary)), dictionary)
+    results = replace(results, budgets=budget_standings(snapshot, dictionary))
+    return run_rules(snapshot, results, dictionary, gate=gate)
 
 
 def described(description: Fields) -> tuple[Snapshot, date]:

@@ -53,6 +53,24 @@ def test_a_project_switches_a_rule_off_in_any_case_of_its_name() -> None:
     assert found("failing", project=policy(Failing_Without_Report="off")) != []
 
 
+def test_a_rule_weighs_at_a_gate_as_the_policy_has_it_there() -> None:
+    stands = {
+        "policy": {
+            "severities": {"failing": "warning"},
+            "gates": {"CDR": {"Failing": "info", "orphan": "off"}},
+        }
+    }
+    weights = {
+        gate: [
+            one.severity
+            for one in findings_of(BASE | FAILS | {"project": stands}, gate=gate)
+            if one.rule == "failing"
+        ]
+        for gate in ("", "cdr", "PDR")
+    }
+    assert weights == {"": [Severity.WARNING], "cdr": [Severity.INFO], "PDR": [Severity.WARNING]}
+
+
 def test_a_severity_that_is_none_changes_nothing() -> None:
     assert [one.severity for one in found("failing", project=policy(failing="fatal"))] == [Severity.ERROR]
 

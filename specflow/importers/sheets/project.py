@@ -30,7 +30,8 @@ LAYOUT = SheetLayout(
             aliases=("Setting", "Property"),
             required=True,
             guidance="Name, Description, Invented, Second review, Keep copies, Marginal threshold in dB, Marginal "
-            "threshold relative, or Severity of and the code of a rule ('specflow rules' lists them).",
+            "threshold relative, or Severity of and the code of a rule ('specflow rules' lists them), with at and the "
+            "name of a review gate where it is to weigh otherwise there.",
             example="Name",
             width=30,
         ),
@@ -51,11 +52,12 @@ LAYOUT = SheetLayout(
         {"mark": "example", "name": "Marginal threshold in dB", "value": "0.5 dB"},
         {"mark": "example", "name": "Marginal threshold relative", "value": "5 %"},
         {"mark": "example", "name": "Severity of no-credit", "value": "info"},
+        {"mark": "example", "name": "Severity of tbd-left at CDR", "value": "error"},
     ),
 )
 
 OFF, DEFAULT = "off", "default"
-_SEVERITY = re.compile(r"severity\s+(?:of\s+)?(?P<rule>\S.*)", re.IGNORECASE)
+_SEVERITY = re.compile(r"severity\s+(?:of\s+)?(?P<rule>\S.*?)(?:\s+at\s+(?P<gate>\S.*))?", re.IGNORECASE)
 
 #: A setting read from its row: the project with it, and how it was understood.
 Set = tuple[Project, str]
@@ -147,7 +149,7 @@ def _stored(intake: Intake) -> Project:
 def _setting(row: SheetRow, name: str, project: Project, seen: dict[str, SheetRow]) -> Set | None:
     """The project with the setting of one row; None where the row is refused."""
     severity = _SEVERITY.fullmatch(name.strip())
-    known = f"severity of {_rule(severity['rule'])}" if severity else _BY_KEY.get(header_key(name))
+    known = _weighed(severity) if severity else _BY_KEY.get(header_key(name))
     if known is None:
         row.fault(
             "name",
@@ -161,7 +163,14 @@ def _setting(row: SheetRow, name: str, project: Project, seen: dict[str, SheetRo
             "name", f"{name} is set already in {first.origin('name').cell}", "delete one of the two rows"
         )
         return None
-    return _severity(row, _rule(severity["rule"]), project) if severity else SETTINGS[known](row, project)
+    if severity is None:
+        return SETTINGS[known](row, project)
+    return _severity(row, _rule(severity["rule"]), severity["gate"] or "", project)
+
+
+def _weighed(severity: re.Match[str]) -> str:
+    """The key of a row that says how a rule weighs: the same for every spelling of rule and gate."""
+    return f"severity of {_rule(severity['rule'])} at {code_key(severity['gate'] or '')}"
 
 
 def _rule(text: str) -> str:
@@ -169,17 +178,25 @@ def _rule(text: str) -> str:
     return re.sub(r"[\s_]+", "-", text.strip()).casefold()
 
 
-def _severity(row: SheetRow, rule: str, project: Project) -> Set | None:
-    """The policy with the severity of a rule; whether there is such a rule is for the rules to say."""
+def _severity(row: SheetRow, rule: str, gate: str, project: Project) -> Set | None:
+    """The policy with the severity of a rule, at a gate if one is named; whether there is such a rule the rules say."""
     text = row.needed("value")
     word = row.pick("value", text, (*reversed(Severity), OFF, DEFAULT)) if text else None
     if word is None:
         return None
-    others = {code: one for code, one in project.policy.severities.items() if code_key(code) != rule}
-    if word == DEFAULT:
-        return _with_policy(row, project, f"{rule} weighs as the rule says", severities=others)
-    words = f"{rule} is switched off" if word == OFF else f"{rule} is of severity {word}"
-    return _with_policy(row, project, words, severities={**others, rule: word})
+    policy = project.policy
+    spelt = next((one for one in policy.gates if code_key(one) == code_key(gate)), gate)
+    before = policy.gates.get(spelt, {}) if gate else policy.severities
+    wanted = {code: one for code, one in before.items() if code_key(code) != rule}
+    where = f" at {spelt}" if gate else ""
+    words = f"{rule} weighs{where} as {'elsewhere' if gate else 'the rule says'}"
+    if word != DEFAULT:
+        wanted |= {rule: word}
+        words = f"{rule} is {'switched off' if word == OFF else f'of severity {word}'}{where}"
+    if not gate:
+        return _with_policy(row, project, words, severities=wanted)
+    gates = {name: own for name, own in policy.gates.items() if name != spelt}
+    return _with_policy(row, project, words, gates={**gates, spelt: wanted} if wanted else gates)
 
 
 def _with_policy(row: SheetRow, project: Project, words: str, **fields: object) -> Set | None:

@@ -91,6 +91,20 @@ def test_a_severity_replaces_the_one_before_and_default_takes_it_back(tmp_path: 
     assert found.policy.severities == {"marginal": "error"}
 
 
+def test_a_severity_at_a_gate_stands_beside_the_general_one_and_default_takes_it_back(tmp_path: Path) -> None:
+    rows = {"Severity of tbd-left at CDR": "error", "severity of TBD left at cdr ": "off"}
+    assert "is set already in A2" in refused(tmp_path, rows).message
+    found = project(tmp_path, {"Severity of TBD left at CDR": "error", "Severity of failing at PDR": "info"})
+    assert found.policy.gates == {"CDR": {"tbd-left": "error"}, "PDR": {"failing": "info"}}
+    assert found.policy.severities == STORED.policy.severities
+    said = loaded(tmp_path, {"Severity of tbd-left at CDR": "error"})
+    assert "tbd-left is of severity error at CDR" in str(said)
+    gated = a_project(policy=Policy(gates={"CDR": {"tbd-left": "error"}}))
+    rows_back = [{"Name": "Severity of tbd-left at cdr", "Value": "default"}]
+    (back,) = read_sheets(tmp_path, a_snapshot(gated), project=rows_back).documents
+    assert isinstance(back, Project) and back.policy.gates == {}
+
+
 @pytest.mark.parametrize(
     ("name", "value", "field", "read"),
     [
