@@ -13,6 +13,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Mapping
+from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -22,7 +23,7 @@ from specflow.conditions.dimensions import find_dimension
 from specflow.conditions.recorded import conversion
 from specflow.conditions.setting import difference_in
 from specflow.errors import ConditionsError
-from specflow.model.columns import Columns, TextColumn
+from specflow.model.columns import Columns, Spans, TextColumn
 from specflow.model.conditions import ConditionMap, MapEntry, MapTerm
 from specflow.units import Converter
 
@@ -105,7 +106,38 @@ def unmap_columns(condition_map: ConditionMap, columns: Columns) -> Columns:
             kept = stated if step is None else np.asarray(step(stated))
             solved = np.where(np.isnan(kept), solved, kept)
         numeric[source.dimension], units[source.dimension] = solved, unit
-    return Columns(columns.size, numeric, _without_numbers(columns.text, numeric), units)
+    spans = _unmapped_spans(condition_map, columns) if columns.spans else {}
+    return Columns(columns.size, numeric, _without_numbers(columns.text, numeric), units, spans)
+
+
+def _unmapped_spans(condition_map: ConditionMap, columns: Columns) -> dict[str, Spans]:
+    """Return the ranges that rows speak for in the terms of the system: both ends and the gap, solved as values are."""
+    targets = {entry.target for entry in condition_map.entries}
+    found = {name: spans for name, spans in columns.spans.items() if name not in targets}
+    for entry in condition_map.entries:
+        spans = columns.spans.get(entry.target)
+        if spans is None:
+            continue
+        ends = []
+        for end in (spans.low, spans.high, spans.low + spans.gap):
+            numeric = {**columns.numeric, entry.target: end}
+            units = {**columns.units, entry.target: spans.unit}
+            placed = Columns(columns.size, numeric, columns.text, units)
+            source = _source_to_solve(entry, placed)
+            if source is None:
+                break
+            ends.append(_solved(entry, source, placed, str(condition_map.id)))
+        else:
+            (low, unit), (high, _), (next_one, _) = ends
+            assert source is not None
+            found[source.dimension] = replace(
+                spans,
+                low=np.minimum(low, high),
+                high=np.maximum(low, high),
+                gap=np.abs(next_one - low),
+                unit=unit,
+            )
+    return found
 
 
 def _signed_parts(formula: str, text: str) -> list[tuple[int, str]]:

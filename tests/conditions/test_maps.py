@@ -9,6 +9,7 @@ from hypothesis import strategies as st
 
 from specflow.conditions import expand, map_columns, match, parse_map_entry, proves, unmap_columns
 from specflow.errors import ConditionsError
+from specflow.model.columns import Columns, Spans
 from specflow.model.conditions import ConditionMap
 from tests.conditions.make import a_set, everything, rows
 
@@ -148,3 +149,25 @@ def test_whatever_line_is_typed_is_read_or_refused_in_words(typed: list[str]) ->
         assert parse_map_entry(" ".join(typed)).target
     except ConditionsError as error:
         assert str(error)
+
+
+def test_ranges_that_rows_speak_for_are_taken_to_the_system_too() -> None:
+    """A value derived over the block's IF speaks for the RF range; with a falling factor the ends change places."""
+    spans = Spans(np.array([1.0]), np.array([2.0]), np.array([0.1]), "GHz", undivided=np.array([True]))
+    columns = Columns(
+        1,
+        {"lo_frequency": np.array([20.0]), "temperature_ambient": np.array([25.0])},
+        units={"lo_frequency": "GHz", "temperature_ambient": "°C"},
+        spans={"if_frequency": spans, "offset": spans},
+    )
+    for formula, low, high in (
+        ("if_frequency = frequency - lo_frequency", 21.0, 22.0),
+        ("if_frequency = lo_frequency - frequency", 18.0, 19.0),
+    ):
+        entry = parse_map_entry(formula)
+        found = unmap_columns(ConditionMap(id="M", entries=(entry,)), columns).spans
+        one = found["frequency"]
+        assert (one.low[0], one.high[0], one.unit) == (low, high, "GHz")
+        assert one.gap[0] == pytest.approx(0.1)
+        assert one.undivided is not None and one.undivided[0]
+        assert found["offset"] is spans  # what no entry speaks of is kept as it is
