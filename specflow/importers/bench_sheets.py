@@ -17,6 +17,7 @@ from specflow.errors import FileError
 from specflow.exchange import digest
 from specflow.importers.measured.document import content_digest
 from specflow.importers.measured.mapping_parts import ColumnMapping, LayoutMapping
+from specflow.importers.measured.rejects import cell_text
 from specflow.importers.measured.result import MeasuredTable, Question
 from specflow.importers.measured.result import Role as ColumnRole
 from specflow.importers.readers import Grid, GridFile, Value, address, column_letter, is_blank
@@ -223,7 +224,7 @@ class _Sheet:
 
     def _lacks(self, row: RowIdentity) -> LeftOut | None:
         """What a row with a value has to say, and does not."""
-        value = str(self._entry(row, Role.VALUE))
+        value = cell_text(self._entry(row, Role.VALUE))
         cell = address(row.row, self._place[Role.VALUE, "", ""])
         if is_blank(str(self._entry(row, Role.ITEM))):
             reason = f"{address(row.row, self._place[Role.ITEM, '', ''])} names no item"
