@@ -5,12 +5,17 @@ from __future__ import annotations
 import re
 from collections.abc import Iterator, Sequence
 
+import numpy as np
+from numpy.typing import NDArray
+
 from specflow.importers.measured.result import Question
 from specflow.importers.measured.work import TableWork
 from specflow.model.base import code_key
 from specflow.model.correction import Correction
-from specflow.model.evidence import EvidenceTable
+from specflow.model.evidence import EvidenceTable, ValueColumn
 
+_FEWEST, _MOST = 3, 0.9  # of readings that must be found again
+_DIGITS = 0.0051  # dB: a corrected reading may have been written with two decimals
 _RAW = ("no", "raw", "not")
 _REMEDY = "--state corrected=no says that the readings are raw, whatever the file says; else leave the correction out"
 
@@ -64,6 +69,25 @@ def _out_of_date(work: TableWork, correction: Correction) -> Iterator[Question]:
         work.notes.append(
             f"{correction.id} has dates of validity, and the table states no date: they were not held"
         )
+
+
+def already_corrected(
+    work: TableWork, correction: Correction, value: ValueColumn, low: NDArray[np.float64]
+) -> str:
+    """Return the earlier table of which these are the readings, row by row, with this correction in; "" if none is."""
+    if len(low) < _FEWEST:
+        return ""
+    for earlier in work.context.snapshot.tables:
+        columns = [one.column for one in earlier.applied if one.correction == correction.id]
+        names = [one.name for one in earlier.values if one.name in columns and one.quantity == value.quantity]
+        if not names or earlier.rows != len(low):
+            continue
+        stored = work.context.snapshot.load_columns([earlier.id])[earlier.id].values
+        for name in names:
+            same = np.isclose(low, stored[name].low, rtol=0, atol=_DIGITS, equal_nan=True)
+            if same.mean() >= _MOST:
+                return earlier.id
+    return ""
 
 
 def note_earlier(work: TableWork, table: EvidenceTable) -> None:

@@ -16,7 +16,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.errors import UnitError
-from specflow.importers.measured.correction_doubts import doubts_of
+from specflow.importers.measured.correction_doubts import already_corrected, doubts_of
 from specflow.importers.measured.correction_units import unit_after
 from specflow.importers.measured.stated import MAPPING, PERSON
 from specflow.importers.measured.work import TableWork
@@ -110,6 +110,11 @@ def _add(work: TableWork, correction: Correction, done: Corrected, place: int) -
     problem = _problem(correction, value, hertz, there)
     if problem:
         work.ask("correction", work.table.place, *problem)
+        return
+    earlier = already_corrected(work, correction, value, arrays.low)
+    if earlier:
+        what = f"these readings are those of {earlier} after {correction.id} was added: it would be in twice"
+        work.ask("correction", work.table.place, what, "leave the correction out, or attach the raw readings")
         return
     assert hertz is not None
     step, spread = at_frequencies(correction, hertz)

@@ -40,7 +40,7 @@ from specflow.model.requirement import Method, Stage
 
 E = TypeVar("E", Method, Stage)
 
-_KEPT = (Role.STATED_LIMIT, Role.STATED_VERDICT, Role.REQUIREMENT, Role.REMARK)
+_KEPT = (Role.STATED_LIMIT, Role.STATED_VERDICT, Role.REQUIREMENT, Role.REMARK, Role.SPECTRUM)
 _ON_AN_ITEM = (Method.TEST, Method.DEMONSTRATION, Method.INSPECTION)
 
 

@@ -28,7 +28,7 @@ from specflow.importers.measured.context import Context
 from specflow.importers.measured.directions import cosine_of
 from specflow.importers.measured.formats import Format, format_of, header_of, is_plain_head
 from specflow.importers.measured.header_cells import HeaderCell
-from specflow.importers.measured.header_text import header_key, read_header
+from specflow.importers.measured.header_text import header_key, known_unit, read_header
 from specflow.importers.measured.mapping import ColumnMapping, LayoutMapping
 from specflow.importers.measured.pairing import of_their_values, uncertainty_column, without_doubles
 from specflow.importers.measured.placeholders import only_mark
@@ -200,7 +200,9 @@ class _Reader:
         stated = format_of(self._stated.text("format"))
         if stated is None or meaning.role is not Role.VALUE:
             return meaning
-        if compatible(parse_unit(stated.unit), parse_unit(meaning.unit)):
+        fits = [known_unit(read_header(one.text).unit or one.unit or "?") for one in self._table.headers]
+        wanted = parse_unit(stated.unit)
+        if compatible(wanted, parse_unit(meaning.unit)) or any(one and compatible(one, wanted) for one in fits):
             return meaning
         return self._contradicted(meaning, stated)
 

@@ -61,9 +61,17 @@ def read_peak_list(work: TableWork, title: str) -> PeakList | None:
     except UnitError as error:
         work.ask("scanned", "", error.message, error.hint or 'say --state scanned="30 MHz to 1 GHz"')
         return PeakList()
+    work.notes.append(f"a list of peaks, {'; '.join(map(_scan_words, scans))}")
     if any(scan.floor is None for scan in scans):
         work.notes.append(f'a scan without its floor: {_PROVES_NOTHING}; --state floor="-85 dBm" says it')
     return PeakList(scans=scans)
+
+
+def _scan_words(scan: PeakScan) -> str:
+    said = f"scanned from {scan.low / 1e6:g} to {scan.high / 1e6:g} MHz"
+    if scan.floor is not None:
+        said += f" down to {scan.floor:g} {scan.floor_unit}"
+    return said + (f" in {scan.bandwidth_hz / 1e3:g} kHz" if scan.bandwidth_hz else "")
 
 
 @dataclass(frozen=True, slots=True)

@@ -151,8 +151,8 @@ def _entry(meaning: ColumnMeaning, mapping: LayoutMapping) -> ColumnMapping:
         return replace(entry, role="condition", dimension=meaning.dimension, unit=unit)
     if meaning.role is Role.UNCERTAINTY:
         return replace(entry, role="uncertainty", unit=unit, k=meaning.k)
-    if meaning.role is Role.BANDWIDTH:
-        return replace(entry, role="remark")
+    if meaning.role is Role.BANDWIDTH:  # what it says is read from each file
+        return entry
     if meaning.role is Role.UNRESOLVED:
         return entry
     return replace(entry, role=meaning.role.value)

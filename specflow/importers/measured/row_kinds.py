@@ -16,6 +16,7 @@ from specflow.importers.measured.result import Role
 from specflow.importers.measured.spectrum_words import bandwidth_in, spectrum_kind
 from specflow.importers.measured.work import TableWork
 from specflow.model.evidence import EvidenceColumns, SpectrumKind, ValueArrays, ValueColumn
+from specflow.units import parse_unit
 
 _MOST = 24
 
@@ -65,10 +66,12 @@ def by_row_kind(
 
 
 def _for(work: TableWork, value: ValueColumn, kind: RowKind) -> RowKind:
-    """What a kind means for one quantity: a gain is the same in every bandwidth."""
+    """What a kind means for one quantity: a gain is the same in every bandwidth, a density is per its own."""
     parameter = work.context.dictionary.get(value.quantity.parameter)
-    if parameter is None or not parameter.needs_bandwidth:
+    if parse_unit(value.unit).bandwidth_hz is not None:
         return RowKind(kind.spectrum, None)
+    if parameter is None or not parameter.needs_bandwidth:
+        return RowKind(None, None)
     return kind
 
 

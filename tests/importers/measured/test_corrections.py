@@ -12,9 +12,11 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from specflow.importers.measured.corrections import at_frequencies
-from specflow.importers.measurements import MeasuredTable
+from specflow.importers.measurements import MeasuredTable, read_measurements
 from specflow.model.correction import Correction, CorrectionPoint
-from tests.importers.measured.make import SAID, book, low, one_table, questions, taken
+from specflow.parameters import load_dictionary
+from tests.builders import a_snapshot
+from tests.importers.measured.make import PROJECT, SAID, book, low, one_table, questions, taken
 
 
 def a_correction(id: str = "CABLE-3", **fields: Any) -> Correction:
@@ -27,7 +29,9 @@ def a_correction(id: str = "CABLE-3", **fields: Any) -> Correction:
 
 
 def eirp(
-    path: Path, *lines: list[Any], table: Correction | None = None,
+    path: Path,
+    *lines: list[Any],
+    table: Correction | None = None,
     header: str = "EIRP (dBm)",
     **said: str,
 ) -> MeasuredTable:
@@ -113,6 +117,25 @@ def test_what_a_file_says_is_recorded_and_not_added(tmp_path: Path) -> None:
     assert (
         table.document.corrections == ("Corrections: CABLE-3, stated in B1",) and not table.document.applied
     )
+
+
+def test_readings_that_were_corrected_before_are_asked_about(tmp_path: Path) -> None:
+    """The bench exports once more, now with the cable in its readings, and somebody names the cable again."""
+    rows = [["f (GHz)", "EIRP (dBm)"], [27.5, 40.0], [28.0, 41.0], [29.0, 42.0]]
+    first = taken(
+        one_table(book(tmp_path / "a.xlsx", rows), a_correction(), stated={**SAID, "correction": "CABLE-3"})
+    )
+    assert first.document is not None and first.columns is not None
+    earlier = first.document.model_copy(update={"id": "EV-1"})
+    snapshot = a_snapshot(*PROJECT, a_correction(), earlier, columns={"EV-1": first.columns})
+    again = [["f (GHz)", "EIRP (dBm)"], [27.5, 43.1], [28.0, 44.2], [29.0, 45.6]]
+    read = read_measurements(
+        book(tmp_path / "b.xlsx", again),
+        snapshot,
+        load_dictionary(),
+        stated={**SAID, "correction": "CABLE-3"},
+    )
+    assert "those of EV-1 after CABLE-3 was added" in questions(read.tables[0])
 
 
 def test_it_is_never_extrapolated(tmp_path: Path) -> None:
