@@ -96,8 +96,7 @@ def test_ends(probe: Probe, given: Sequence[Ends | None], notes: Sequence[str] =
     matters = sides_that_matter(probe)
     for number, (read, own) in enumerate(zip(probe.chain.lines, given, strict=True)):
         if own is None and moves(read.line):
-            low, high = bounds(read)
-            own = np.broadcast_to(low, (probe.size,)), np.broadcast_to(high, (probe.size,))
+            own = tolerance_ends(probe, number)
             if matters[number].any():
                 said.append(f"{line_name(read)} moves within its tolerance; no requirement holds it there")
         elif own is None and read.role.figure == "source_k":
@@ -109,6 +108,12 @@ def test_ends(probe: Probe, given: Sequence[Ends | None], notes: Sequence[str] =
     missing += _open_sides(probe, corners)
     limits = tuple(_limit(probe, corner, ends) for corner in corners)
     return Closure(probe.budget.id, limits, tuple(dict.fromkeys(missing)), tuple(dict.fromkeys(said)))
+
+
+def tolerance_ends(probe: Probe, number: int) -> Ends:
+    """Return the ends (n,) of a line that moves within its tolerance."""
+    low, high = bounds(probe.chain.lines[number])
+    return np.broadcast_to(low, (probe.size,)), np.broadcast_to(high, (probe.size,))
 
 
 def _limit(probe: Probe, corner: Corner, ends: Sequence[Ends | None]) -> ClosureOf:

@@ -12,9 +12,10 @@ from numpy.typing import NDArray
 from specflow.budgets.allotment import Allotment, joined, key_of, rounded_safely, rounded_widely
 from specflow.budgets.allowed import Ends, worst_corner
 from specflow.budgets.chain import ReadLine
-from specflow.budgets.closure import Closure, ends_of_children, test_ends
+from specflow.budgets.closure import Closure, ends_of_children, test_ends, tolerance_ends
 from specflow.budgets.knowledge import KnownLine, Rank
 from specflow.budgets.probe import Probe, line_name
+from specflow.budgets.spread import moves
 from specflow.model.requirement import Requirement
 from specflow.statistics.prediction import one_sided_quantile
 
@@ -157,11 +158,15 @@ def _miss(
 
 
 def _costs(probe: Probe, ends: Sequence[Ends | None], number: int, moved: Ends | None) -> tuple[Cost, ...]:
-    changed = list(ends)
+    standing = [
+        tolerance_ends(probe, place) if own is None and moves(read.line) else own
+        for place, (read, own) in enumerate(zip(probe.chain.lines, ends, strict=True))
+    ]
+    changed = list(standing)
     changed[number] = moved
     found = []
     for target in probe.targets:
-        before, after = (worst_corner(probe, target, each) for each in (ends, changed))
+        before, after = (worst_corner(probe, target, each) for each in (standing, changed))
         if before.worst < 0:
             continue
         first, second = float(before.margin[before.worst]), float(after.margin[after.worst])

@@ -5,11 +5,12 @@ from __future__ import annotations
 import contextlib
 import re
 
-from specflow.budgets.chain import LineKey
+from specflow.budgets.chain import LineKey, line_key
 from specflow.errors import DocumentError, ParameterError
 from specflow.model.base import code_key
 from specflow.model.budget import Budget, BudgetLine
 from specflow.parameters import Dictionary
+from specflow.reports.budget_trail import value_words
 
 _POSITION = re.compile(r"(?:position\s+)?(\d+)\s+(.+)", re.IGNORECASE)
 
@@ -33,6 +34,23 @@ def line_named(budget: Budget, text: str, dictionary: Dictionary) -> BudgetLine:
     raise DocumentError(
         f"there is no line {text!r}", where=f"budget {budget.id}", hint=f"its lines are {listed}"
     )
+
+
+def lines_in_words(before: Budget, after: Budget) -> str:
+    """Say which lines differ between two budgets, from what to what."""
+    first, second = ({line_key(one): one for one in budget.lines} for budget in (before, after))
+    said = []
+    for key in dict.fromkeys((*first, *second)):
+        old, new = first.get(key), second.get(key)
+        if old == new:
+            continue
+        if old is None or new is None:
+            word, line = ("added", new) if old is None else ("removed", old)
+            assert line is not None  # one of the two budgets has it
+            said.append(f"{line.place} {word}: {value_words(line)}")
+        else:
+            said.append(f"{new.place}: {value_words(old)} → {value_words(new)}")
+    return "; ".join(said)
 
 
 def key_named(budget: Budget, text: str, dictionary: Dictionary) -> LineKey:

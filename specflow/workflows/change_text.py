@@ -228,9 +228,16 @@ def _of_whole(budget: Budget, name: str, value: str) -> Budget:
         fields = {"input_level": quantity.value, "input_level_unit": quantity.unit.symbol}
     elif name == "noise source":
         fields = {"noise_source": convert(quantity.value, quantity.unit, parse_unit("K"))}
+        _check_least(fields["noise_source"], value, "a temperature below 0 K", is_above=False)
     else:
         fields = {"bandwidth_hz": convert(quantity.value, quantity.unit, parse_unit("Hz"))}
+        _check_least(fields["bandwidth_hz"], value, "no bandwidth: one is above 0 Hz", is_above=True)
     return Budget.model_validate(dict(budget) | fields)
+
+
+def _check_least(number: float, text: str, wrong: str, *, is_above: bool) -> None:
+    if number < 0 or (is_above and number == 0):
+        raise DocumentError(f"{text!r} is {wrong}", hint="correct the sign, the number or the unit")
 
 
 def read_tolerance(text: str, unit: str) -> LineTolerance | None:

@@ -24,6 +24,7 @@ from specflow.store import ProjectStore
 from specflow.verification import evaluate
 from specflow.workflows.allocate import AllocateOptions, propose
 from specflow.workflows.as_known import children_of_budget
+from specflow.workflows.budget_lines import lines_in_words
 from specflow.workflows.change_text import changed_documents
 from specflow.workflows.evaluate_project import project_dictionary
 from specflow.workflows.subjects import requirements_named
@@ -33,7 +34,8 @@ from specflow.workflows.subjects import requirements_named
 class AllocationEffect:
     """A block requirement whose allocation would follow no longer: what it carries and what the budget would give.
 
-    ``proposed`` is "" where the budget gives the same and only revisions moved on; ``why`` says what happened.
+    ``proposed`` is "" where the budget gives the same and only revisions moved on, or gives none, as ``difference``
+    says then; ``why`` says what happened.
     """
 
     allocation: str
@@ -83,7 +85,21 @@ def try_changes(store: ProjectStore, texts: Sequence[str], as_of: date) -> Trial
         evaluate(before, dictionary, as_of=as_of),
         evaluate(after, dictionary, as_of=as_of),
     )
-    return Trial(diff(before, documents), effects, allocations, statuses, tuple(notes), before.revision)
+    changes = [_in_words(change, before, after) for change in diff(before, documents)]
+    return Trial(changes, effects, allocations, statuses, tuple(notes), before.revision)
+
+
+def _in_words(change: Change, before: Snapshot, after: Snapshot) -> Change:
+    """Say of the lines of a budget what they were and what they would be."""
+    first, second = (snapshot.find(Budget, change.id) for snapshot in (before, after))
+    if change.noun != "budget" or first is None or second is None:
+        return change
+    said = lines_in_words(first, second)
+    fields = tuple(
+        one.model_copy(update={"meaning": said}) if one.field == "lines" and said else one
+        for one in change.fields
+    )
+    return change.model_copy(update={"fields": fields})
 
 
 def keep_trial(store: ProjectStore, trial: Trial, *, by: str, reason: str) -> int:
@@ -140,7 +156,7 @@ def _allocations(
         notes += [note] if note else []
         for link in _links(after, budget):
             if moved[link.id]:
-                found.append(_effect(link, after, given, moved[link.id]))
+                found.append(_effect(link, after, given, moved[link.id], is_shared=not note))
     return tuple(found), notes
 
 
@@ -163,7 +179,10 @@ def _moved(link: Allocation, before: Snapshot, after: Snapshot) -> str:
 
 
 def _given(after: Snapshot, dictionary: Dictionary, budget: Budget) -> tuple[dict[str, str], str]:
-    """Return what the budget would give each child, by its key, shared with the choices it was shared with before."""
+    """Return what the budget would give each child, by its key, shared with the choices it was shared with before.
+
+    With a note, and nothing, where it can no longer be shared.
+    """
     sharing = next((link.sharing for link in _links(after, budget) if link.sharing is not None), None)
     options = AllocateOptions.of(sharing) if sharing is not None else AllocateOptions()
     try:
@@ -173,7 +192,9 @@ def _given(after: Snapshot, dictionary: Dictionary, budget: Budget) -> tuple[dic
     return {code_key(one.child.id): one.given.text for one in preview.proposals}, ""
 
 
-def _effect(link: Allocation, after: Snapshot, given: dict[str, str], why: str) -> AllocationEffect:
+def _effect(
+    link: Allocation, after: Snapshot, given: dict[str, str], why: str, *, is_shared: bool
+) -> AllocationEffect:
     child = after.find(Requirement, link.child)
     limit = child.limit.text if child is not None else ""
     proposed = given.get(code_key(link.child), "")
@@ -182,6 +203,10 @@ def _effect(link: Allocation, after: Snapshot, given: dict[str, str], why: str) 
         from specflow.limits import parse_limit
 
         difference = limit_difference(child.limit, parse_limit(proposed))
+    if not is_shared:
+        difference = "not known: the budget cannot be shared"
+    elif not proposed:
+        difference = "the budget gives it no share"
     return AllocationEffect(link.id, link.child, limit, proposed if difference else "", difference, why)
 
 

@@ -71,7 +71,7 @@ def _allocations(trial: Trial) -> ReportTable:
             one.allocation,
             one.child,
             one.limit,
-            one.proposed or "the same",
+            one.proposed or ("" if one.difference else "the same"),
             one.difference,
             one.why,
         )

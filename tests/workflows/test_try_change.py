@@ -14,6 +14,7 @@ from specflow.model.requirement import Requirement
 from specflow.workflows.allocate import AllocateOptions, accept_allocation, preview_allocation
 from specflow.workflows.change_text import read_tolerance
 from specflow.workflows.try_change import compare_alternatives, keep_trial, try_changes
+from specflow.workflows.try_tables import trial_tables
 from tests.budgets import receiver
 from tests.builders import (
     a_quantity,
@@ -203,9 +204,7 @@ def test_budgets_of_one_requirement_side_by_side(tmp_path: Path) -> None:
 
 def test_a_budget_is_shared_again_with_the_choices_it_was_shared_with(tmp_path: Path) -> None:
     """What a trial says each child would get is what allocating the changed budget with the same choices gives."""
-    options = AllocateOptions(
-        "least effort", fixed=("IF",), free_gains=("LNA",), weights={"MIX": 3.0}
-    )
+    options = AllocateOptions("least effort", fixed=("IF",), free_gains=("LNA",), weights={"MIX": 3.0})
     with receiver.make_store(tmp_path / "rx.specflow") as store:
         accept_allocation(store, preview_allocation(store, "RX", options), by="A. Invented")
         link = next(one for one in store.load().all(Allocation) if one.child == "LNA-NOISE-FIGURE")
@@ -219,3 +218,26 @@ def test_a_budget_is_shared_again_with_the_choices_it_was_shared_with(tmp_path: 
     assert given and all(expected[child] == text for child, text in given.items())
     plain = {one.child.id: one.given.text for one in other.proposals}
     assert any(plain.get(child) != text for child, text in given.items())
+
+
+def test_a_budget_that_can_no_longer_be_shared_does_not_give_the_same(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        accept_allocation(store, preview_allocation(store, "RX"), by="A. Invented")
+        trial = try_changes(store, ["RX LNA noise_figure = -2 dB"], AS_OF)
+    assert trial.allocations
+    assert all("cannot be shared" in one.difference and not one.proposed for one in trial.allocations)
+    (change,) = trial.changes
+    said = next(one.meaning for one in change.fields if one.field == "lines")
+    assert said == "LNA noise_figure (position 1): 1.2 dB → -2 dB"
+    table = next(one for one in trial_tables(trial) if one.key == "allocations")
+    assert all(cell.text != "the same" for row in table.rows for cell in row.cells)
+
+
+@pytest.mark.parametrize(
+    ("text", "words"),
+    [("RX noise source = -50 K", "a temperature below 0 K"), ("RX bandwidth = 0 Hz", "no bandwidth")],
+)
+def test_what_no_budget_can_have_is_refused_in_plain_words(tmp_path: Path, text: str, words: str) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store, pytest.raises(SpecflowError) as caught:
+        try_changes(store, [text], AS_OF)
+    assert words in caught.value.message
