@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, field
 from functools import cached_property
 
@@ -39,9 +40,12 @@ class ColumnCells:
         return ~np.isnan(self.numbers)
 
     @cached_property
-    def odd(self) -> tuple[int, ...]:
+    def odd(self) -> Sequence[int]:
         """The numbers of the rows that hold something else than a plain number."""
-        return tuple((np.flatnonzero(self.filled & ~self.numeric) + self.first).tolist())
+        places = np.flatnonzero(self.filled & ~self.numeric)
+        if len(places) == len(self.numbers):  # a column of words: a million numbers of rows need not be kept
+            return range(self.first, self.first + len(places))
+        return tuple((places + self.first).tolist())
 
     @cached_property
     def distinct(self) -> frozenset[Value]:
@@ -83,4 +87,4 @@ def _words(grid: Grid, column: int, first: int, stop: int) -> ColumnCells:
     for run in grid.odd.in_column(column, first, stop):
         if run.cell.kind in (OddKind.ERROR, OddKind.NO_VALUE):
             filled[max(run.first - first, 0) : run.last + 1 - first] = True
-    return ColumnCells(grid, column, first, np.full(len(values), np.nan), filled)
+    return ColumnCells(grid, column, first, np.broadcast_to(np.nan, len(values)), filled)
