@@ -27,11 +27,11 @@ _TEMPERATURE = re.compile(
 )
 _TEMPERATURE_WORD = re.compile(r"\btemp(?:erature)?s?\b\s*[:=@]?\s*$", re.IGNORECASE)
 _POWER = re.compile(
-    r"\b(?P<words>(?:input|source|drive|port|rf|test|in)?\s*(?:power|level)|p_?in|power)\b\s*[:=@]?\s*"
-    r"(?P<value>[+\-−]?\s*\d+(?:\.\d+)?\s*dBm)\b",
+    r"(?:^\s*|[,;:]\s*|\b(?P<words>(?:input|source|drive|stimulus|port|rf)\s+|p_?)(?=power|level|in\b))"
+    r"(?:power|level|in)\b\s*[:=@]?\s*(?P<value>[+\-−]?\s*\d+(?:\.\d+)?\s*dBm)\b",
     re.IGNORECASE,
 )
-_INPUT = re.compile(r"input|source|drive|p_?in|\bin\b", re.IGNORECASE)
+_INPUT = re.compile(r"input|source|drive|stimulus|port|^p_?$", re.IGNORECASE)
 #: What the reader looks at itself: names of ports, headers of columns. Neither is a condition.
 _NOT_STATED = ("frequency", "port")
 _OF_THE_READER = re.compile(r"\bport\s*[\[<(]?\s*\d|[SYZGH]\d\d\b.*[SYZGH]\d\d\b", re.IGNORECASE)
@@ -97,7 +97,7 @@ def _sentences(comment: Comment, questions: list[Question]) -> Iterator[Fact]:
     cell, text = f"line {comment.line}", comment.text
     power = _POWER.search(text)
     if power:
-        key = "input power" if _INPUT.search(power["words"]) else "power level"
+        key = "input power" if _INPUT.search((power["words"] or "").strip()) else "power level"
         value = power["value"].replace("−", "-").replace(" ", "").replace("dBm", " dBm")
         yield Fact(key, value, cell, comment.line)
     for match in _TEMPERATURE.finditer(text):

@@ -206,7 +206,7 @@ def _axis_doubts(comments: Sequence[Comment], shape: Shape) -> Iterator[Doubt]:
         match = _ENTRY.search(comment.text)
         head = comment.text[: match.start()] if match else ""
         is_last = bool(above) and comment is above[-1]
-        if not match and is_last and not re.search(r"[:=]", comment.text):
+        if not match and is_last and not re.search(r"[:=\d]", comment.text):
             head = " ".join(comment.text.split()[:2])
         swept = _SWEPT.search(comment.text)
         header = head and _OTHER_AXIS.search(head) and not _FREQUENCY.search(head)
