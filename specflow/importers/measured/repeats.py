@@ -20,6 +20,8 @@ Record = tuple[object, ...]
 
 def without_repeats(tables: Sequence[MeasuredTable]) -> list[MeasuredTable]:
     """Leave out rows all of whose records (quantity, item, conditions, value) stand in an earlier table of the file."""
+    if sum(table.columns is not None for table in tables) < 2:
+        return list(tables)  # sorting the millions of values of a lone table would find nothing
     seen: dict[Record, str] = {}
     result = []
     doubles = _shared_values(tables)

@@ -124,6 +124,8 @@ class TypedColumns(CellStore):
         self._columns = columns
         self._rows = rows
         self._words = words
+        self._objects = np.empty(len(words) + 1, object)
+        self._objects[:] = [*words, ""]
         self._blank = np.array([isinstance(word, str) and not word.strip() for word in words] + [True])
         self._text = np.array([isinstance(word, str) for word in words] + [True])
 
@@ -148,15 +150,15 @@ class TypedColumns(CellStore):
         if place >= self.width:
             return [""] * (stop - start)
         column = self._columns[place]
+        codes = None if column.codes is None else column.codes[start:stop]
         if column.numbers is None:
-            cells: list[Value] = [""] * (stop - start)
-        else:
-            numbers = column.numbers[start:stop]
-            cells = numbers.tolist()
-            for empty in np.flatnonzero(np.isnan(numbers)).tolist():
-                cells[empty] = ""
-        if column.codes is not None:
-            codes = column.codes[start:stop]
+            # code -1 takes the last of the objects, which is the empty cell
+            return [""] * (stop - start) if codes is None else self._objects[codes].tolist()
+        numbers = column.numbers[start:stop]
+        cells: list[Value] = numbers.tolist()
+        for empty in np.flatnonzero(np.isnan(numbers)).tolist():
+            cells[empty] = ""
+        if codes is not None:
             for here in np.flatnonzero(codes >= 0).tolist():
                 cells[here] = self._words[codes[here]]
         return cells
