@@ -6,6 +6,7 @@ memory, as said at each; all of them recompute.
 
 from __future__ import annotations
 
+import itertools
 import math
 from pathlib import Path
 from typing import Any
@@ -62,7 +63,7 @@ def satellite_receiver() -> tuple[list[dict[str, Any]], Worksheet]:
 def beside(table: Worksheet, words: str) -> float:
     """Return the number to the right of some words."""
     for row in table.iter_rows(max_row=40):
-        for cell, following in zip(row, row[1:], strict=False):
+        for cell, following in itertools.pairwise(row):
             if isinstance(cell.value, str) and cell.value.strip() == words:
                 return float(str(following.value))
     raise AssertionError(words)
