@@ -102,7 +102,8 @@ def _end(run: FolderRun, *, as_json: bool, dry_run: bool = False) -> int:
             say(f"{one.path.name}: {one.remedy.removeprefix(f'{one.path.name}: ')}")
     say(f"{run.counts()}{'; nothing was stored' if dry_run else ''}")
     if run.interrupted:
-        say(f"interrupted at {run.interrupted}; the files above are whole, run it again to go on")
+        whole = "nothing was stored" if dry_run else "the files above are whole, run it again to go on"
+        say(f"interrupted at {run.interrupted}; {whole}")
         return int(ExitCode.INTERRUPTED)
     if run.stopped is not None:
         show_error(run.stopped)

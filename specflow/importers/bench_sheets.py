@@ -71,14 +71,26 @@ def bench_identity(file: GridFile) -> BenchIdentity | None:
         ) from None
 
 
-def read_bench(file: GridFile, identity: BenchIdentity, snapshot: Snapshot, read: ReadArea) -> ReadBench:
-    """Read what is filled in; each block, quantity, method and stage is a table of its own."""
+def read_bench(
+    file: GridFile,
+    identity: BenchIdentity,
+    snapshot: Snapshot,
+    read: ReadArea,
+    sheets: Sequence[str] = (),
+) -> ReadBench:
+    """Read what is filled in; each block, quantity, method and stage is a table of its own.
+
+    ``sheets`` limits what is read. FileError for one that is not part of the test sheet.
+    """
+    asked = _asked(identity, sheets, file.fingerprint.name)
     grids = {code_key(grid.name): grid for grid in file}
     own = {code_key(name) for name in (IDENTITY_SHEET, LISTS_SHEET, GUIDE_SHEET)}
     tables: list[MeasuredTable] = []
     notes = [*_other_project(identity, snapshot), *_changed_requirements(identity, snapshot)]
     sheet_id = digest(identity.model_dump(mode="json"))[:16]
     for sheet in identity.sheets:
+        if code_key(sheet.name) not in asked:
+            continue
         grid = grids.get(code_key(sheet.name))
         if grid is None:
             tables.append(_asking(sheet, [_missing(sheet)]))
@@ -93,7 +105,23 @@ def read_bench(file: GridFile, identity: BenchIdentity, snapshot: Snapshot, read
         for grid in file
         if code_key(grid.name) not in known
     ]
+    skipped += [
+        f"sheet {one.name}: not asked for" for one in identity.sheets if code_key(one.name) not in asked
+    ]
     return ReadBench(tables, skipped, notes)
+
+
+def _asked(identity: BenchIdentity, sheets: Sequence[str], name: str) -> set[str]:
+    known = {code_key(sheet.name): sheet.name for sheet in identity.sheets}
+    for sheet in sheets:
+        if code_key(sheet) not in known:
+            names = ", ".join(map(repr, known.values()))
+            raise FileError(
+                f"there is no sheet {sheet!r} on this test sheet",
+                where=name,
+                hint=f"sheets with rows: {names}",
+            )
+    return set(map(code_key, sheets)) or set(known)
 
 
 def _other_project(identity: BenchIdentity, snapshot: Snapshot) -> Iterator[str]:
@@ -326,6 +354,9 @@ class _Sheet:
         point, columns = rows[0].point, table.columns
         if len(table.document.values) != 1 or table.document.values[0].quantity != point.quantity:
             return "the quantity that was read is not that of the test sheet"
+        said = table.document.block, table.document.method, table.document.stage
+        if said != (point.block, point.method, point.stage):
+            return f"it was stated to be of {', '.join(said)}, the test sheet is of another block, method or stage"
         points = {row.row: row.point for row in rows}
         for place, number in enumerate(columns.source_rows.tolist()):
             if number not in points:

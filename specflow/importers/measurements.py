@@ -76,7 +76,7 @@ def read_measurements(
     file = open_grids(path)
     identity = bench_identity(file)
     if identity is not None:
-        return _of_test_sheet(file, identity, context, person)
+        return _of_test_sheet(file, identity, context, person, sheets, include_hidden_rows)
     skipped: list[str] = []
     findings: list[Finding] = []
     located: list[LocatedTable] = []
@@ -99,7 +99,12 @@ def read_measurements(
 
 
 def _of_test_sheet(
-    file: GridFile, identity: BenchIdentity, context: Context, person: Mapping[str, str]
+    file: GridFile,
+    identity: BenchIdentity,
+    context: Context,
+    person: Mapping[str, str],
+    sheets: Sequence[str],
+    include_hidden_rows: bool,
 ) -> Measurements:
     """A test sheet that came back: its identity says all that a mapping would; stored mappings have no part in it."""
     documents = {**context.snapshot.documents, "mapping": {}}
@@ -108,9 +113,9 @@ def _of_test_sheet(
     def read(grid: Grid, mapping: LayoutMapping) -> list[MeasuredTable]:
         mappings = Mappings(GivenMappings((mapping,), MARK), own)
         located = locate_tables(grid, own, mappings).tables
-        return [_read(one, own, person, include_hidden_rows=False).table for one in located]
+        return [_read(one, own, person, include_hidden_rows).table for one in located]
 
-    bench = read_bench(file, identity, context.snapshot, read)
+    bench = read_bench(file, identity, context.snapshot, read, sheets)
     findings = [finding for table in bench.tables for finding in table.findings]
     findings += [_of_file(file, note) for note in bench.notes]
     if not bench.tables:

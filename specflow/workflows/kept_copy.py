@@ -91,8 +91,10 @@ def write_kept(copy: KeptCopy, target: Path | None, *, overwrite: bool = False) 
     try:
         part.write_bytes(copy.content)
         part.replace(path)
-    except OSError as error:
+    except BaseException as error:
         part.unlink(missing_ok=True)
+        if not isinstance(error, OSError):
+            raise
         reason = error.strerror or str(error)
         raise FileError(
             f"the file cannot be written: {reason}", where=str(path), hint="check folder and space"

@@ -541,3 +541,29 @@ def test_an_office_program_may_open_and_save_it_on_the_way(store: ProjectStore, 
     assert not asked(store, back)
     assert attach(store, back).values == 27
     assert proved(store) == {"G-1": (12, 12), "G-2": (12, 12), "NF-1": (2, 2), "EIRP-1": (1, 1)}
+
+
+def test_what_the_person_says_does_not_outdo_the_identity(store: ProjectStore, tmp_path: Path) -> None:
+    path = fill(written(store, tmp_path / "t.xlsx"), good)
+    preview = preview_attach(store, path, AttachOptions(stated={"block": "PA"}))
+    [lna] = {table.questions[0].what for table in preview.measurements.tables if table.sheet == "LNA"}
+    assert "another block, method or stage" in lna
+    preview = preview_attach(store, path, AttachOptions(sheets=["pa"]))
+    assert {table.sheet for table in preview.measurements.tables} == {"PA"}
+    assert "sheet LNA: not asked for" in preview.measurements.skipped
+    with pytest.raises(FileError, match="no sheet 'X' on this test sheet"):
+        preview_attach(store, path, AttachOptions(sheets=["X"]))
+
+
+def test_rows_that_are_hidden_are_rejected_unless_they_are_asked_for(
+    store: ProjectStore, tmp_path: Path
+) -> None:
+    path = fill(written(store, tmp_path / "t.xlsx", requirements=["G-1"]), good)
+
+    def hide(workbook: Workbook) -> None:
+        workbook["LNA"].row_dimensions[9].hidden = True
+
+    [table] = look(store, edited(path, hide)).measurements.tables
+    assert table.values == 11 and "hidden" in table.rejected[0].reason
+    preview = preview_attach(store, path, AttachOptions(include_hidden_rows=True))
+    assert preview.values == 12
