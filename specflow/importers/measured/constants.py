@@ -10,7 +10,7 @@ from specflow.importers.measured.names import name_of
 from specflow.importers.measured.rejects import cell_text
 from specflow.importers.measured.result import Role
 from specflow.importers.measured.roles import role_of_words, uncertainty_of
-from specflow.importers.measured.spectrum_words import bandwidth_in, speaks_of_kinds
+from specflow.importers.measured.spectrum_words import bandwidth_in, heads_kinds, speaks_of_kinds
 from specflow.importers.measured.stated import Said, Stated
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.readers import is_blank, looks_numeric
@@ -62,8 +62,8 @@ def read_constants(table: FoundTable, mapping: LayoutMapping, stated: Stated) ->
     for header in table.headers:
         parts = read_header(header.text)
         name = name_of(parts.name)
-        if name not in _OF_THE_TABLE and table.cells(header.column).numeric.all():
-            continue  # a million numbers are not looked at one by one
+        if name not in _OF_THE_TABLE and not heads_kinds(parts.name):
+            continue  # the cells of other columns are not looked at one by one
         cells = table.cells(header.column).at(table.rows)
         if speaks_of_kinds(parts.name, cells) and not mapping_settles(mapping, header.text, header.letter):
             found[header.column] = ConstantColumn(Role.SPECTRUM, "it says line or noise of each row")

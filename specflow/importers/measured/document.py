@@ -121,6 +121,10 @@ def content_digest(table: EvidenceTable, columns: EvidenceColumns) -> str:
     told = {name: value for name, value in told.items() if value or name not in _WHERE_SAID}
     words = [text for _, text in sorted(columns.conditions.text.items())]
     told["labels"] = [columns.items.labels, *(text.labels for text in words)]
+    beside = [columns.extra[one.name] for one in table.stated if one.name in columns.extra]
+    if beside:
+        words += beside
+        told["stated words"] = [text.labels for text in beside]
     if columns.dates is not None:
         words.append(columns.dates)
         told["dates"] = columns.dates.labels

@@ -69,8 +69,10 @@ def only_mark(table: FoundTable, column: int) -> str:
         if (numbers[there] != first).any() or not (abs(first) in _MARKS or abs(first) >= NO_NUMBER):
             return ""
         return f"{first:.12g} in all {np.count_nonzero(there)} rows"
-    words = {str(value).strip() for value in cells.at(table.rows)} - {""}
-    if len(words) != 1 or not np.isnan(numbers[there]).all():
+    if not np.isnan(numbers[there]).all():
+        return ""
+    words = {str(value).strip() for value in cells.distinct} - {""}
+    if len(words) != 1:
         return ""
     word = words.pop()
     try:

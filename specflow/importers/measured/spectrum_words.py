@@ -37,9 +37,14 @@ def spectrum_kind(word: str) -> SpectrumKind | None:
     return _KINDS.get(plain) if plain not in ("", "—", "–") else SpectrumKind.UNKNOWN
 
 
+def heads_kinds(header: str) -> bool:
+    """Whether a header may stand over lines and noise."""
+    return re.sub(r"[\s\-_./]+", "", header.casefold()) in _HEADS
+
+
 def speaks_of_kinds(header: str, values: Iterable[Value]) -> bool:
     """Whether a column says line or noise of each row, by its header and by all that it holds."""
-    if re.sub(r"[\s\-_./]+", "", header.casefold()) not in _HEADS:
+    if not heads_kinds(header):
         return False
     words = [str(value) for value in values if not is_blank(value)]
     return bool(words) and all(spectrum_kind(word) is not None for word in words)
