@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Mapping, Sequence
+from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -15,9 +15,10 @@ from specflow.importers.measured.derivation_plan import DerivationPlan
 from specflow.importers.measured.document import Identity, make_document
 from specflow.importers.measured.mapping import LayoutMapping, write_mapping
 from specflow.importers.measured.network_columns import NetworkTable, noise_table, scattering_table
+from specflow.importers.measured.network_derivations import derivation_plans
 from specflow.importers.measured.network_doubts import NETWORK_KEYS, Axis, SettledNetwork, settle
 from specflow.importers.measured.network_facts import CommentFacts, comment_facts
-from specflow.importers.measured.network_plans import WHOLE, Plan, Plans, plans_for
+from specflow.importers.measured.network_plans import Plans, plans_for
 from specflow.importers.measured.network_ports import KEY, named_ports, unknown_ports
 from specflow.importers.measured.rejects import Rejects
 from specflow.importers.measured.result import ColumnReading, MeasuredTable, Role
@@ -27,11 +28,11 @@ from specflow.importers.measured.subject import find_block, item_name, item_note
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.measured.work import TableWork
 from specflow.importers.readers.grid import Grid
-from specflow.importers.readers.touchstone_comments import outside_data
 from specflow.importers.readers.touchstone_network import NetworkFile
+from specflow.importers.readers.touchstone_shape import outside_data
 from specflow.model.block import Block
 from specflow.model.columns import Columns, TextColumn
-from specflow.model.evidence import ConditionColumn, EvidenceColumns, HowRead
+from specflow.model.evidence import ConditionColumn, EvidenceColumns, EvidenceTable, HowRead
 from specflow.model.finding import Finding, Severity
 from specflow.model.origin import Origin
 from specflow.model.requirement import Method, Stage
@@ -163,34 +164,8 @@ class _Reading:
         work.questions += [question] if question else []
         work.notes += item_notes(items, self.context, block)
         plans = self._plans(work, columns, block)
-        conditions = read_conditions(work.table, (), self.stated, work.rows, work.rejects)
-        numeric = {axis.dimension: columns.axis, **conditions.columns.numeric}
-        units = {**conditions.columns.units, **({axis.dimension: axis.unit} if axis.unit else {})}
-        arrays = EvidenceColumns(
-            Columns(len(columns.lines), numeric, conditions.columns.text, units),
-            columns.arrays,
-            columns.lines,
-            items,
-        )
-        documents = [
-            ConditionColumn(
-                dimension=axis.dimension, kind="numeric", unit=axis.unit, column=1, header=axis.dimension,
-                unit_from=axis.by,
-            ),
-            *conditions.documents,
-        ]  # fmt: skip
-        document = None
-        if block is not None and not work.questions and len(columns.lines):
-            method = Method(self.stated.text("method").casefold() or "test")
-            stage = Stage(self.stated.text("stage").casefold() or "qualification")
-            identity = Identity(block, method, stage, f"{self.key}{columns.part}", columns.title, "")
-            document = make_document(work, identity, columns.documents, documents, arrays)
-        if work.questions:
-            document = None
-        if document is not None:
-            how = HowRead(importer=self.importer, layout=self.key, place=columns.place,
-                          stated=tuple(sorted(self.person.items())))  # fmt: skip
-            document = document.model_copy(update={"how_read": how})
+        arrays, documents = self._arrays(work, columns, axis, items)
+        document = self._document(work, columns, block, arrays, documents)
         return MeasuredTable(
             sheet="",
             place=columns.place,
@@ -209,6 +184,41 @@ class _Reading:
             columns=None if document is None else arrays,
             plans=tuple(plans) if document is not None else (),
         )
+
+    def _arrays(
+        self, work: TableWork, columns: NetworkTable, axis: Axis, items: TextColumn
+    ) -> tuple[EvidenceColumns, list[ConditionColumn]]:
+        """The arrays of a table, and the documents of its axis and of the conditions stated for it."""
+        conditions = read_conditions(work.table, (), self.stated, work.rows, work.rejects)
+        numeric = {axis.dimension: columns.axis, **conditions.columns.numeric}
+        units = {**conditions.columns.units, **({axis.dimension: axis.unit} if axis.unit else {})}
+        stated = Columns(len(columns.lines), numeric, conditions.columns.text, units)
+        first = ConditionColumn(
+            dimension=axis.dimension, kind="numeric", unit=axis.unit, column=1, header=axis.dimension,
+            unit_from=axis.by,
+        )  # fmt: skip
+        return EvidenceColumns(stated, columns.arrays, columns.lines, items), [first, *conditions.documents]
+
+    def _document(
+        self,
+        work: TableWork,
+        columns: NetworkTable,
+        block: Block | None,
+        arrays: EvidenceColumns,
+        conditions: list[ConditionColumn],
+    ) -> EvidenceTable | None:
+        """The document of a table, None while something is to be settled."""
+        if block is None or work.questions or not len(columns.lines):
+            return None
+        method = Method(self.stated.text("method").casefold() or "test")
+        stage = Stage(self.stated.text("stage").casefold() or "qualification")
+        identity = Identity(block, method, stage, f"{self.key}{columns.part}", columns.title, "")
+        document = make_document(work, identity, columns.documents, conditions, arrays)
+        if document is None or work.questions:
+            return None
+        how = HowRead(importer=self.importer, layout=self.key, place=columns.place,
+                      stated=tuple(sorted(self.person.items())))  # fmt: skip
+        return document.model_copy(update={"how_read": how})
 
     def _items(self, work: TableWork, rows: int) -> TextColumn:
         item = item_name(self.stated.items, self.context)
@@ -232,40 +242,10 @@ class _Reading:
             for why in found.asked:
                 remedy = f"{self.ports.needed()}; --state derive=none keeps the raw data only"
                 work.ask("ports", "", f"to be derived for {why}", remedy)
-        plans = []
-        for plan in found.plans:
-            if plan.noise != columns.is_noise:
-                continue
-            made = self._with_columns(plan, columns, work)
-            plans += [made] if made is not None else []
-        return plans
-
-    def _with_columns(self, plan: Plan, columns: NetworkTable, work: TableWork) -> DerivationPlan | None:
-        values = columns.roles(plan.entries)
-        over = self._whole(columns, [name for _, name in values]) if plan.over == WHOLE else plan.over
-        if plan.over and not over:
-            work.notes.append(f"not derived: {plan.why}: {plan.quantity.parameter}: there is one row only")
-            return None
-        names = columns.entry_names(plan.entries)
-        entries = ", ".join(names if len(names) < 4 else [names[0], "...", names[-1]]) or "the noise block"
-        settings = dict(plan.settings)
-        if plan.noise:
-            settings["reference"] = _figure(self.network.reference_ohm[0])
-        return DerivationPlan(plan.law, values, plan.quantity, over, plan.why, entries, settings)
-
-    def _whole(self, columns: NetworkTable, names: Sequence[str]) -> str:
-        """The whole range of the rows that have all values, as a law takes it; with the largest gap where some lack."""
-        has = np.ones(len(columns.axis), np.bool_)
-        for name in names:
-            has &= ~np.isnan(columns.arrays[name].low)
-        along = np.unique(columns.axis[has])
-        if len(along) < 2:
-            return ""
-        axis = self.settled.axis
-        gap = (
-            f" step {_figure(np.diff(along).max())} {_gap_unit(axis.unit)}".rstrip() if not has.all() else ""
-        )
-        return f"{axis.dimension}: {_figure(along[0])}..{_figure(along[-1])} {axis.unit}{gap}"
+        mine = [plan for plan in found.plans if plan.noise == columns.is_noise]
+        made, notes = derivation_plans(mine, columns, self.settled.axis, float(self.network.reference_ohm[0]))
+        work.notes += notes
+        return made
 
     def _recognised(
         self, columns: NetworkTable, axis: Axis, block: Block | None, block_from: str
@@ -306,15 +286,6 @@ def _parted(said: Mapping[str, str]) -> tuple[dict[str, str], dict[str, str]]:
         {key.strip().casefold(): text for key, text in said.items() if key in mine},
         {key: text for key, text in said.items() if key not in mine},
     )
-
-
-def _figure(value: float) -> str:
-    """A number as a range takes it: no exponent, every digit."""
-    return np.format_float_positional(float(value), trim="-")
-
-
-def _gap_unit(unit: str) -> str:
-    return {"°C": "K", "dBm": "dB", "dBW": "dB"}.get(unit, unit)
 
 
 def _finding(network: NetworkFile, line: int, what: str) -> Finding:

@@ -90,7 +90,7 @@ def scattering_table(network: NetworkFile) -> NetworkTable:
         pairs[i, j] = (names[0], names[1])
     notes = _zero_notes(network) + _place_notes(network, moving)
     return NetworkTable(
-        title=f"scattering parameters of {network.ports} port{'s' * (network.ports != 1)}",
+        title=_title(network),
         place=_lines_words(network.lines),
         axis=network.axis,
         lines=network.lines.astype(np.int32),
@@ -101,6 +101,12 @@ def scattering_table(network: NetworkFile) -> NetworkTable:
         holes=[hole for hole in network.holes if not _in_noise(network, hole)],
         notes=tuple(notes),
     )
+
+
+def _title(network: NetworkFile) -> str:
+    """What the table is, with the reference impedance: gain and match mean something at it only."""
+    ohms = ", ".join(f"{ohm:g}" for ohm in dict.fromkeys(network.reference_ohm.tolist()))
+    return f"scattering parameters of {network.ports} port{'s' * (network.ports != 1)} at {ohms} ohm"
 
 
 def _entry_name(network: NetworkFile, i: int, j: int) -> str:

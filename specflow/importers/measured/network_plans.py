@@ -83,15 +83,9 @@ def plans_for(
         found.left.append("nothing is derived, as stated")
         return found
     spacing = said_of_network.get("spacing", "")
-    wishes = [
-        _Wish(
-            one.quantity, one.id, _span(one, context, "frequency"), _span(one, context, "scan_theta"), spacing
-        )
-        for one in context.snapshot.requirements
-        if code_key(one.block) == code_key(block.id)
-    ]
-    if said:
-        wishes = [_Wish(quantity, "as stated", spacing=spacing) for quantity in _said(said, context, found)]
+    wishes = [_Wish(quantity, "as stated", spacing=spacing) for quantity in _said(said, context, found)]
+    if not said:
+        wishes = _required(block, context, spacing)
     for wish in wishes:
         quantity, why = wish.quantity, wish.why
         make = _LAWS.get(quantity.parameter)
@@ -116,6 +110,17 @@ def plans_for(
             '--state "derive=gain; return loss at input" says what is'
         )
     return found
+
+
+def _required(block: Block, context: Context, spacing: str) -> list[_Wish]:
+    """What the requirements on a block want."""
+    own = [one for one in context.snapshot.requirements if code_key(one.block) == code_key(block.id)]
+    return [
+        _Wish(
+            one.quantity, one.id, _span(one, context, "frequency"), _span(one, context, "scan_theta"), spacing
+        )
+        for one in own
+    ]
 
 
 def _add(found: Plans, plan: Plan) -> None:

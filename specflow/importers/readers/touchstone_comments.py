@@ -11,17 +11,17 @@ from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
+from specflow.importers.readers.touchstone_impedances import read_impedances
 from specflow.importers.readers.touchstone_network import (
     Comment,
     Complexes,
     Doubt,
     DoubtKind,
-    Floats,
     PairFormat,
     Remark,
 )
+from specflow.importers.readers.touchstone_shape import Shape, outside_data
 
 _ENTRY = re.compile(
     r"(?:^|(?<=[^A-Za-z0-9])|(?<=mag)|(?<=ang)|(?<=db)|(?<=re)|(?<=im)|(?<=deg)|(?<=arg)|(?<=phase))"
@@ -45,31 +45,6 @@ _PORT_IS = re.compile(
 )
 _IS_PORT = re.compile(r"(?P<name>[A-Za-z][\w /-]*?)\s*=\s*port\s*[\[<(]?\s*(?P<number>\d+)", re.IGNORECASE)
 _A_FIGURE = re.compile(r"^[-+]?[\d.]+\s*\w{0,4}$")
-_IMPEDANCES = re.compile(r"^\s*port impedances?\s*:?(?P<rest>.*)$", re.IGNORECASE)
-_ONE_IMPEDANCE = re.compile(
-    r"\b(?:z_?[0o]|(?:port|reference|ref\.?|characteristic|system)[ _]impedance)\b[^\d!]{0,20}?(?P<ohm>\d+(?:\.\d+)?)"
-    r"(?:\s*ohms?|\s*Ω)?",
-    re.IGNORECASE,
-)
-_NUMBER = re.compile(r"[-+]?\d+(?:\.\d*)?(?:[eE][-+]?\d+)?")
-
-
-@dataclass(frozen=True, slots=True)
-class Shape:
-    """What is known of the data when the comments are read; ``order`` are the entries in the order of the format."""
-
-    parameter: str
-    pair_format: PairFormat
-    order: tuple[tuple[int, int], ...]
-    axis: Floats
-    lines: NDArray[np.int64]
-    reference: tuple[float, ...]
-    reference_stated: bool
-
-    @property
-    def ports(self) -> int:
-        """How many ports there are."""
-        return len(self.reference)
 
 
 @dataclass(frozen=True, slots=True)
@@ -87,15 +62,9 @@ def read_comments(comments: Sequence[Comment], shape: Shape) -> Told:
     outside = outside_data(comments, shape.lines)
     doubts = [*_column_doubts(outside, shape), *_axis_doubts(outside, shape)]
     remarks = [*_other_entry(outside, shape), *_ports_of_analyser(outside, shape)]
-    impedances = _impedances(comments, shape, remarks)
+    impedances = read_impedances(comments, shape, remarks)
     names = _port_names(outside, shape.ports)
     return Told(tuple(doubts), tuple(remarks), names, impedances)
-
-
-def outside_data(comments: Sequence[Comment], lines: NDArray[np.int64]) -> list[Comment]:
-    """Return the comments above the first and below the last frequency: simulators put thousands between."""
-    first, last = int(lines[0]), int(lines[-1])
-    return [one for one in comments if (one.line < first or one.line > last) and not one.beside_data]
 
 
 def mentions(text: str, parameter: str) -> list[tuple[int, int]]:
@@ -224,73 +193,3 @@ def _port_names(comments: Sequence[Comment], ports: int) -> tuple[str, ...]:
             if 1 <= number <= ports and name and not _A_FIGURE.match(name) and not names[number - 1]:
                 names[number - 1] = name[:60]
     return tuple(names) if any(names) else ()
-
-
-def _impedances(comments: Sequence[Comment], shape: Shape, remarks: list[Remark]) -> Complexes | None:
-    """Port impedances (n, p) that comments give for each frequency; a remark where they are not the reference."""
-    blocks = _impedance_blocks(comments)
-    wanted = shape.ports
-    usable = [(line, block) for line, block in blocks if len(block) in (wanted, 2 * wanted)]
-    if not usable:
-        remarks += _single_impedances(outside_data(comments, shape.lines), shape)
-        return None
-    values = np.array([_complex_list(block, wanted) for _, block in usable], np.complex128)
-    line = usable[0][0]
-    if len(values) not in (1, len(shape.axis)) or len(usable) != len(blocks):
-        what = (
-            f"{len(blocks)} lists of port impedances in comments for {len(shape.axis)} frequencies; not used"
-        )
-        remarks.append(Remark(line, what, warns=True))
-        return None
-    away = np.abs(values - np.asarray(shape.reference)) / np.asarray(shape.reference)
-    if (away > 1e-3).any():
-        shown = ", ".join(f"port {port + 1} {_ohms(one)}" for port, one in enumerate(values[0][:4]))
-        remarks.append(Remark(line, _not_the_reference(f"port impedances ({shown}, ...)", shape), warns=True))
-    return np.broadcast_to(values, (len(shape.axis), wanted))
-
-
-def _complex_list(block: list[float], wanted: int) -> Complexes:
-    """Impedances from ``wanted`` real numbers, or as many pairs of real and imaginary part."""
-    pairs = np.asarray(block, np.float64).reshape(wanted, -1)
-    value = np.zeros(wanted, np.complex128)
-    value.real = pairs[:, 0]
-    value.imag = pairs[:, 1] if pairs.shape[1] > 1 else 0.0
-    return value
-
-
-def _not_the_reference(what: str, shape: Shape) -> str:
-    ohms = sorted(set(shape.reference))
-    says = (
-        f"the option line says R {ohms[0]:g}" if shape.reference_stated else "the file names no R (so 50 ohm)"
-    )
-    return (
-        f"comments give {what}, {says}: the entries may be referred to the impedances of the comments; "
-        "they were read as written"
-    )
-
-
-def _ohms(value: complex) -> str:
-    return f"{value.real:.6f} ohm" if value.imag == 0 else f"{value.real:.6f}{value.imag:+.6f}j ohm"
-
-
-def _impedance_blocks(comments: Sequence[Comment]) -> list[tuple[int, list[float]]]:
-    """Lists that begin with "Port Impedance", over comment lines that follow each other and hold only numbers."""
-    blocks: list[tuple[int, list[float]]] = []
-    last = -1
-    for comment in comments:
-        match = _IMPEDANCES.match(comment.text)
-        if match:
-            numbers = _NUMBER.findall(match["rest"])
-            blocks.append((comment.line, [float(one) for one in numbers]))
-            last = comment.line
-        elif blocks and comment.line == last + 1 and not re.search(r"[A-DF-Za-df-z]", comment.text):
-            blocks[-1][1].extend(float(one) for one in _NUMBER.findall(comment.text))
-            last = comment.line
-    return blocks
-
-
-def _single_impedances(comments: Sequence[Comment], shape: Shape) -> Iterator[Remark]:
-    for comment in comments:
-        match = _ONE_IMPEDANCE.search(comment.text)
-        if match and all(abs(float(match["ohm"]) - ohm) > 1e-3 * ohm for ohm in shape.reference):
-            yield Remark(comment.line, _not_the_reference(f"an impedance of {match['ohm']} ohm", shape), True)

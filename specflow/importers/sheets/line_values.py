@@ -18,7 +18,7 @@ from typing import Literal
 
 from specflow.conditions import find_dimension, is_unlocated_temperature, unlocated_temperature_hint
 from specflow.errors import DocumentError, UnitError
-from specflow.importers.readers.touchstone import read_touchstone
+from specflow.importers.readers.touchstone_trace import read_touchstone
 from specflow.model.budget_line import ConditionTable, Constant, Drift, LineValue, Trace
 from specflow.units import convert, format_value, parse_number, parse_unit, split_quantity, tolerance_unit
 
