@@ -19,6 +19,8 @@ from specflow.model.conditions import Span
 from specflow.model.declared import UncertaintyEntry
 from specflow.model.derivation import Derivation
 from specflow.model.evidence import EvidenceTable, Supersession
+from specflow.model.verdict import RecordRef
+from specflow.reports.origins import OriginFinder
 from specflow.store import ProjectStore, create_project
 from specflow.workflows.attach import AttachOptions, Decision, accept_attach, preview_attach
 from specflow.workflows.derive import preview_derive
@@ -180,6 +182,8 @@ def test_a_network_is_verified_against_its_file(store: ProjectStore, tmp_path: P
     rows = "{f} 0.5 0 0.25 0 0.125 0\n0.25 0 0.5 0 0.1 0\n0.125 0 0.1 0 0.5 0\n"
     path.write_text("# GHz S RI R 50\n" + rows.format(f=1) + rows.format(f=2))
     attached(store, path, block="FIL", item="FIL-7", derive="none")
+    origin = OriginFinder(store.load()).origin(RecordRef("EV-1", "S32 real", 1))
+    assert origin is not None and (origin.row, origin.column) == (7, 3)  # the third line of the second frequency
     asks_more = a_requirement(
         "R-AI", block="FIL", quantity=a_quantity("amplitude_imbalance"), limit=at_most(0.5), conditions="PASS"
     )
