@@ -36,8 +36,8 @@ class KnownServed:
 
     ``served`` is held at the values known; ``spread`` (n,) is the standard uncertainty of the result in the unit of
     the margin, of ``freedom`` (n,) effective degrees; ``predicted`` (n,) the margin kept with ``confidence``,
-    one-sided; ``probability`` (n,) that the limit and the reserve are kept at that place. Never multiply these over
-    places: one system meets all places or does not.
+    one-sided, about the means of tolerances whose sides are unlike; ``probability`` (n,) that the limit and the reserve
+    are kept at that place. Never multiply these over places: one system meets all places or does not.
     """
 
     served: Served
@@ -144,7 +144,8 @@ def _served(
     spread = np.sqrt(variances.sum(axis=0))
     degrees = effective_freedom(variances, freedom)
     reach = one_sided_quantile(confidence, degrees) * spread
-    value = result.of(target.output.parameter).result
+    shift = np.sum([line.shift * slope for line, slope in zip(lines, slopes, strict=True)], axis=0)
+    value = result.of(target.output.parameter).result + shift
     predicted = np.minimum(target.bar.margin(value - reach), target.bar.margin(value + reach))
     in_limit = spread * _rise(target, value)
     return KnownServed(one, in_limit, degrees, predicted, _probability(target, value, in_limit, degrees))

@@ -108,6 +108,8 @@ class KnownLine:
     specimens the value comes from; ``spread`` (n,): standard deviation with which the next specimen (or this one)
     may differ from the value; ``freedom`` (n,) the degrees of freedom of that; ``common`` (n,): the standard
     uncertainty that all specimens share, counted once. ``is_known``: anything better than the line itself was used.
+    ``shift`` (n,): how far the mean of the line's own tolerance lies from its figure, where that tolerance is what is
+    known of its spread.
     """
 
     read: ReadLine
@@ -120,6 +122,7 @@ class KnownLine:
     freedom: Floats
     common: Floats
     is_known: NDArray[np.bool_]
+    shift: Floats
     notes: tuple[str, ...] = ()
 
     def source_words(self, place: int) -> str:
@@ -160,7 +163,7 @@ def best_known(
 class _Table:
     """What is known so far, place by place."""
 
-    def __init__(self, read: ReadLine, size: int, spread: float, freedom: float) -> None:
+    def __init__(self, read: ReadLine, size: int, spread: float, shift: float, freedom: float) -> None:
         source = read.line.source or read.line.maturity.value
         self.value = np.array(np.broadcast_to(read.values, (size,)))
         self.rank = np.full(size, int(own_rank(read)))
@@ -172,6 +175,7 @@ class _Table:
         self.common = np.zeros(size)
         self.is_known = np.zeros(size, bool)
         self.own_spread = spread
+        self.shift = shift
         self.notes: dict[str, None] = {}
 
     def source_number(self, words: str) -> int:
@@ -192,24 +196,28 @@ class _Table:
             self.freedom,
             self.common,
             self.is_known,
+            np.where(self.is_known, 0.0, self.shift),
             tuple(self.notes),
         )
 
 
 def _own(chain: Chain, read: ReadLine) -> _Table:
     """A line by itself: its tolerance is its spread where that names a distribution."""
-    spread = _own_spread(chain, read)
-    table = _Table(read, chain.size, spread, math.inf)
+    spread, shift = _own_spread(chain, read)
+    table = _Table(read, chain.size, spread, shift, math.inf)
     tolerance = read.line.tolerance
     if tolerance is not None and moments(tolerance) is None and (tolerance.minus or tolerance.plus):
         table.notes[f"the tolerance of {read.line.place} names no distribution and gives no spread"] = None
     return table
 
 
-def _own_spread(chain: Chain, read: ReadLine) -> float:
+def _own_spread(chain: Chain, read: ReadLine) -> tuple[float, float]:
+    """Return standard deviation and mean of a line about its figure by its own tolerance."""
     tolerance = read.line.tolerance
     found = moments(tolerance) if tolerance is not None else None
-    return 0.0 if found is None else found.deviation / math.sqrt(elements(chain, read))
+    if found is None:
+        return 0.0, 0.0
+    return found.deviation / math.sqrt(elements(chain, read)), found.mean
 
 
 def _take_type(table: _Table, one: Knowledge, count: int) -> None:

@@ -265,3 +265,17 @@ def test_a_group_of_which_one_line_is_known_by_few_items_has_their_freedom() -> 
     served = known(budget, knowledge(1, "gain", [9.0, 10.0, 11.0])).served[0]
     assert served.spread[0] == pytest.approx(math.sqrt(4 / 3) + 0.4)
     assert served.freedom[0] == pytest.approx(2.0)
+
+
+def test_a_tolerance_with_unlike_sides_moves_what_is_predicted() -> None:
+    """+0.9/-0.3 dB uniform: mean 0.3 dB, σ 1.2/√12; a loss that is likelier more than less."""
+    uneven = {"tolerance": {"minus": 0.3, "plus": 0.9, "meaning": "limits", "distribution": "uniform"}}
+    budget = a_chain(
+        {"block": "A", "gain": 20.0}, {"block": "B", "attenuation": 3.0, "more": {"attenuation": uneven}},
+        parameter="gain",
+    )  # fmt: skip
+    served = known(budget).served[0]
+    assert served.served.margin[0] == pytest.approx(5.0)
+    assert served.predicted[0] == pytest.approx(5.0 - 0.3 - 1.644854 * 1.2 / math.sqrt(12), abs=1e-5)
+    measured = known(budget, knowledge(2, "attenuation", [3.0, 3.1, 2.9])).served[0]
+    assert measured.predicted[0] == pytest.approx(5.0 - 2.919986 * 0.1 * math.sqrt(4 / 3), abs=1e-5)
