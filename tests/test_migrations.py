@@ -119,7 +119,7 @@ def test_an_older_project_is_copied_and_upgraded_when_opened(
     assert "specflow load" in (refused.value.hint or "")
     with open_project(where, clock=noon, backup_folder=tmp_path) as store:
         (note,) = store.notes
-        copies = list(tmp_path.glob(f"*-schema{NEWEST}-20260504T120000.specflow"))
+        copies = list(tmp_path.glob(f"*.specflow-schema{NEWEST}-20260504T120000"))
         assert [str(copy) in note for copy in copies] == [True]
         assert f"upgraded from schema {NEWEST} to {NEWEST + 1}" in note
         assert_is_filled(store.load())
@@ -134,6 +134,19 @@ def test_an_older_project_is_copied_and_upgraded_when_opened(
         assert_is_filled(store.load())
     with pytest.raises(StoreError, match=f"schema {NEWEST + 1}"):
         open_project(where)
+
+
+def test_a_project_of_the_first_schema_gains_what_came_later(where: str, tmp_path: Path) -> None:
+    with create_project(where, a_project()) as store:
+        store.apply(changes(), columns={"T-1": some_evidence()}, by="me")
+    with place_of(where).migrating() as connection:
+        schema.migrate(connection, "0001")
+        assert "correction" not in inspect(connection).get_table_names()
+    with open_project(where, clock=noon, backup_folder=tmp_path) as store:
+        assert "upgraded from schema 1" in store.notes[0]
+        assert_is_filled(store.load())
+    with place_of(where).querying() as connection:
+        assert differences(connection) == []
 
 
 def assert_is_filled(snapshot: Snapshot) -> None:

@@ -67,11 +67,6 @@ def create_noun_tables() -> None:
         attribute("parameter", "key of the parameter it is for"),
     )
     noun_table(
-        "correction",
-        "correction table",
-        attribute("set_up", "the measurement set-up"),
-    )
-    noun_table(
         "requirement",
         "requirement",
         link("requirement", "block", "block", nullable=False),
@@ -131,14 +126,6 @@ def create_noun_tables() -> None:
         attribute("method", "verification method"),
         attribute("stage", "verification stage"),
     )
-    noun_table(
-        "derivation",
-        "derivation",
-        link("derivation", "again_of", "derivation", itself=True),
-        attribute("law", "the law that was applied"),
-        attribute("parameter", "key of the parameter that it gives"),
-    )
-    link_table("derivation", "derivation", "inputs", "evidence_table")
     noun_table(
         "supersession",
         "supersession",
@@ -358,7 +345,6 @@ def downgrade() -> None:
         "history",
         "project_state",
         "budget_requirements",
-        "derivation_inputs",
         "requirement_parents",
         "approval",
         "baseline",
@@ -369,7 +355,6 @@ def downgrade() -> None:
         "item_change",
         "withdrawal",
         "supersession",
-        "derivation",
         "evidence_table",
         "evidence_file",
         "mapping",
@@ -377,7 +362,6 @@ def downgrade() -> None:
         "budget",
         "activity",
         "requirement",
-        "correction",
         "uncertainty",
         "declared_value",
         "condition_map",

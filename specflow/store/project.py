@@ -121,7 +121,8 @@ def _upgrade(place: Place, clock: Clock, backup_folder: Path | None) -> str:
     with translated(place.name):
         with place.reading() as run:
             before = stored_version(run)
-        name = f"{place.copies.name}-schema{before}-{clock():%Y%m%dT%H%M%S}.specflow"
+        # the ending is another, so that a folder with one project goes on having one
+        name = f"{place.copies.name}.specflow-schema{before}-{clock():%Y%m%dT%H%M%S}"
         copy = (backup_folder or place.copies.parent) / name
         place.copy_to(copy)
         with place.migrating() as connection:
