@@ -12,6 +12,7 @@ from dataclasses import replace
 
 import numpy as np
 
+from specflow.errors import UnitError
 from specflow.importers.measured.cells import read_column
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.facts import Fact, read_preamble
@@ -29,6 +30,10 @@ _STARTS = frozenset(
     ("xstart", "start", "startfreq", "startfrequency", "startfreqency", "fstart", "freqstart", "xmin")
 )
 _STOPS = frozenset(("xstop", "stop", "stopfreq", "stopfrequency", "fstop", "freqstop", "xmax", "xend", "end"))
+_X_UNIT = re.compile(r"^(?:x[\s_-]*(?:axis[\s_-]*)?units?|units?[\s_-]*x)\b", re.IGNORECASE)
+_Y_UNIT = re.compile(
+    r"^(?:y[\s_-]*(?:axis[\s_-]*)?units?|units?[\s_-]*y|(?:level|amplitude)[\s_-]*units?)\b", re.IGNORECASE
+)
 _SECTION = re.compile(r"^\[[^\[\]]+\]$")
 
 
@@ -48,9 +53,16 @@ def find_block(grid: Grid, top: int, stop: int) -> int | None:
 
 
 def end_before_more(grid: Grid, block: int) -> int:
-    """The last row of a block where words and another block follow; else the last row of the grid."""
+    """The last row of a block where settings and another block follow; else the last row of the grid.
+
+    One line of words between the blocks is a remark; settings are several.
+    """
     last = _last_row(grid, block, _number_columns(grid, block)[0])
-    return last if find_block(grid, last + 1, grid.last_row + 1) is not None else grid.last_row
+    more = find_block(grid, last + 1, grid.last_row + 1)
+    if more is None:
+        return grid.last_row
+    written = [row for row in range(last + 1, more) if not all(map(is_blank, grid.row(row)))]
+    return last if len(written) > 1 else grid.last_row
 
 
 def is_far_from(grid: Grid, header: int, block: int) -> bool:
@@ -74,7 +86,8 @@ def block_table(grid: Grid, top: int, block: int, context: Context) -> FoundTabl
     cells = grid.cut(area)
     table = headerless(cells, top, block, context.recognises)
     facts = read_preamble(grid, _section_row(grid, top, block), block).facts
-    headers = _named(table, facts, _units_above(grid, block), columns)
+    headers = _in_one_cell(grid, top, block, columns, context)
+    headers = headers or _named(table, facts, _units_above(grid, block), columns)
     words = _words_above(grid, top, block)
     table = replace(table, grid=cells, headers=headers, top=block, words_above=words, has_words=bool(words))
     return replace(table, facts=section_facts(grid, top, block))
@@ -135,14 +148,35 @@ def _last_row(grid: Grid, block: int, column: int) -> int:
     return block + int(filled[-1])
 
 
+def _in_one_cell(
+    grid: Grid, top: int, block: int, columns: Sequence[int], context: Context
+) -> tuple[HeaderCell, ...]:
+    """The headers in a line directly above that is one cell: "# Freq(Hz) Amp(dBm)", as many words as columns."""
+    for row in range(block - 1, top - 1, -1):
+        filled = [value for value in grid.row(row) if not is_blank(value)]
+        if not filled:
+            continue
+        words = str(filled[0]).split() if len(filled) == 1 else []
+        if (
+            len(words) != len(columns)
+            or not any(map(context.recognises, words))
+            or any(map(looks_numeric, words))
+        ):
+            return ()
+        return tuple(HeaderCell(column, row, word) for column, word in zip(columns, words, strict=True))
+    return ()
+
+
 def _named(
     table: FoundTable, facts: Sequence[Fact], units: Sequence[tuple[str, str, str]], columns: Sequence[int]
 ) -> tuple[HeaderCell, ...]:
     """Name the axis by its start and stop, and the only other column by the only unit above."""
-    axis = _axis_of(table, facts, columns)
+    axis = _axis_of(table, facts, columns, units)
     if axis is None:
         return table.headers
     column, unit, cell = axis
+    levels = [one for one in units if _Y_UNIT.match(one[1])]
+    units = levels or [one for one in units if not _X_UNIT.match(one[1])]
     others = [one for one in columns if one != column]
     spelled = known_unit(unit)
     name = "Frequency" if spelled is not None and spelled.dimension == "frequency" else "Axis"
@@ -160,17 +194,25 @@ def _named(
     return tuple(named)
 
 
-def _axis_of(table: FoundTable, facts: Sequence[Fact], columns: Sequence[int]) -> tuple[int, str, str] | None:
-    """(column, unit, cell of the start) where a column begins at the start that is stated and ends at the stop."""
+def _axis_of(
+    table: FoundTable, facts: Sequence[Fact], columns: Sequence[int], units: Sequence[tuple[str, str, str]]
+) -> tuple[int, str, str] | None:
+    """(column, unit, cell of the start) where a column begins at the start that is stated and ends at the stop.
+
+    Where start and stop have no unit, the settings name the unit of the x axis.
+    """
     starts = [fact for fact in facts if header_key(fact.key).replace(" ", "") in _STARTS]
     stops = [fact for fact in facts if header_key(fact.key).replace(" ", "") in _STOPS]
     if len(starts) != 1 or len(stops) != 1 or not len(table.rows):
         return None
     try:
         low, high = parse_quantity(starts[0].value), parse_quantity(stops[0].value)
-    except ValueError:
+    except UnitError:
         return None
-    if str(low.unit) != str(high.unit) or str(low.unit) == "1":
+    unit = str(low.unit)
+    if unit == "1":
+        unit = next((found for found, name, _ in units if _X_UNIT.match(name)), "1")
+    if str(low.unit) != str(high.unit) or unit == "1":
         return None
     ends = (int(table.rows[0]), int(table.rows[-1]))
     fitting = []
@@ -178,7 +220,7 @@ def _axis_of(table: FoundTable, facts: Sequence[Fact], columns: Sequence[int]) -
         first, last = table.cells(column).numbers_at(np.array(ends, np.int32)).tolist()
         if np.isclose(first, float(low.value), 1e-9) and np.isclose(last, float(high.value), 1e-9):
             fitting.append(column)
-    return (fitting[0], str(low.unit), starts[0].cell) if len(fitting) == 1 else None
+    return (fitting[0], unit, starts[0].cell) if len(fitting) == 1 else None
 
 
 def _units_above(grid: Grid, block: int) -> list[tuple[str, str, str]]:

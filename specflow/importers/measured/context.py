@@ -12,6 +12,7 @@ from specflow.importers.measured.mapping import read_mappings
 from specflow.importers.measured.mapping_parts import LayoutMapping
 from specflow.importers.measured.quantity_text import name_quantity
 from specflow.importers.measured.roles import role_of_words, uncertainty_of
+from specflow.model.base import code_key
 from specflow.model.block import Block
 from specflow.model.conditions import ConditionsSet
 from specflow.model.evidence import TableMapping
@@ -55,7 +56,8 @@ class Context:
     def recognises(self, text: str) -> bool:
         """Whether a header means something: it has a unit, or names a role, a condition or a parameter."""
         if text not in self._recognised:
-            self._recognised[text] = self._recognises(text)
+            is_item = code_key(text) in self.snapshot.items_by_name
+            self._recognised[text] = not is_item and self._recognises(text)
         return self._recognised[text]
 
     def _recognises(self, text: str) -> bool:

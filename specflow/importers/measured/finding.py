@@ -42,20 +42,25 @@ def _next(grid: Grid, top: int, context: Context) -> tuple[FoundTable, int] | No
     row = None if header is None else header.row
     certain = header is not None and header.is_known
     stop = grid.last_row + 1 if row is None or not certain else row
-    side = find_sideways(grid, top, stop, context, is_only=row is None and top == grid.first_row)
+    block = None if certain and not grid.is_text else find_block(grid, top, grid.last_row + 1)
+    is_only = not certain and block is None and top == grid.first_row
+    side = find_sideways(grid, top, stop, context, is_only)
     if side is not None and (row is None or side[0].grid.first_column <= row or not certain):
         return side
     reach = grid.last_row + 1 if row is None else row + _ROWS_BELOW + 1
     numbers = find_number_row(grid, top, reach, context)
     if numbers is not None:
         return _ended(lambda cells: table_under(cells, top, numbers, context), grid, context)
-    block = find_block(grid, top, grid.last_row + 1) if row is None or grid.is_text else None
-    if block is not None and (row is None or block < row or is_far_from(grid, row, block)):
+    if (
+        block is not None
+        and (row is None or grid.is_text)
+        and (row is None or block < row or is_far_from(grid, row, block))
+    ):
         table = block_table(grid, top, block, context)
         return table, table.stop_row
     if row is None:
         return None
-    last = grid.last_row if block is None else end_before_more(grid, block)
+    last = end_before_more(grid, block) if block is not None and grid.is_text else grid.last_row
     if last < grid.last_row:
         grid = grid.cut(CellRange(grid.first_row, grid.first_column, last, grid.last_column))
     return _ended(lambda cells: cut_table(cells, top, row, 1, context.recognises), grid, context)

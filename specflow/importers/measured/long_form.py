@@ -26,6 +26,10 @@ _NAMES = frozenset(
     ("parameter", "parameters", "quantity", "measurement", "measurand", "characteristic", "property", "metric", "param",
      "measuredparameter", "parametername", "testparameter", "messgröße", "kenngröße")
 )  # fmt: skip
+#: Words over names of quantities as often as over names of other things: what the rows say decides.
+_PERHAPS_NAMES = frozenset(
+    ("item", "description", "name", "contribution", "element", "test", "entry", "line")
+)
 _VALUES = frozenset(
     ("value", "values", "result", "results", "measured", "reading", "measuredvalue", "measuredresult", "testresult",
      "messwert", "wert")
@@ -38,15 +42,22 @@ def find_long(table: FoundTable, mapping: LayoutMapping, context: Context) -> Lo
     if any(entry.role or entry.parameter or entry.dimension for entry in mapping.columns) or mapping.pivots:
         return None
     names, values, units = (_only(table, words) for words in (_NAMES, _VALUES, _UNITS))
-    if names is None or values is None:
+    perhaps = None if names else _only(table, _PERHAPS_NAMES)
+    names = names or perhaps
+    if names is None or values is None or (perhaps is not None and units is None):
         return None
-    rows = table.rows.tolist()
-    for row in rows:
+    known = named = 0
+    for row in table.rows.tolist():
         text = table.grid.value(row, names.column)
         unit = table.grid.value(row, units.column) if units else ""
-        if isinstance(text, str) and _is_quantity(text, str(unit).strip(), context):
-            return LongMapping(names.letter, values.letter, units.letter if units else "")
-    return None
+        if isinstance(text, str) and not is_blank(text):
+            named += 1
+            known += _is_quantity(text, str(unit).strip(), context)
+        if known and perhaps is None:
+            break
+    if not known or (perhaps is not None and 2 * known < named):
+        return None
+    return LongMapping(names.letter, values.letter, units.letter if units else "")
 
 
 def long_parts(

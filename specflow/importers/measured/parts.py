@@ -37,6 +37,8 @@ def parts_of(table: FoundTable, mapping: LayoutMapping, context: Context) -> lis
         return long_parts(table, long, read_as, context)
     if mapping.others:
         read_as = _others_unread(table, read_as)
+    if table.pivots and not mapping.pivots:
+        read_as = _with_axis(table, read_as)
     pivots = mapping.pivots or (
         () if _is_settled(mapping) else table.pivots or pivots_of_headers(table, context)
     )
@@ -52,6 +54,18 @@ def parts_of(table: FoundTable, mapping: LayoutMapping, context: Context) -> lis
 def _is_settled(mapping: LayoutMapping) -> bool:
     """Whether a person said what the columns are; what was recognised of them then does not count."""
     return any(entry.role or entry.parameter or entry.dimension for entry in mapping.columns)
+
+
+def _with_axis(table: FoundTable, read_as: LayoutMapping) -> LayoutMapping:
+    """Say that the first column of a table under numbers is its axis: a level there is no result."""
+    axis = table.headers[0]
+    dimension = find_dimension(read_header(axis.text).name)
+    if dimension is None or dimension.name not in ("power_level", "input_level"):
+        return read_as
+    if read_as.column(axis.text, axis.letter) is not None:
+        return read_as
+    entry = ColumnMapping(header=axis.text, column=axis.letter, role="condition", dimension=dimension.name)
+    return replace(read_as, columns=(*read_as.columns, entry))
 
 
 def _with_lettered(table: FoundTable, mapping: LayoutMapping) -> FoundTable:

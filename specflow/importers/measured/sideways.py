@@ -6,7 +6,7 @@ from dataclasses import dataclass, replace
 
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.facts import read_preamble
-from specflow.importers.measured.header_cells import UNIT_WORDS, HeaderCell
+from specflow.importers.measured.header_cells import UNIT_WORDS, HeaderCell, with_unit
 from specflow.importers.measured.header_text import header_key, known_unit, read_header
 from specflow.importers.measured.items import names_items
 from specflow.importers.measured.place_facts import amounts_of
@@ -55,7 +55,25 @@ def _turned(grid: Grid, region: Region, context: Context) -> FoundTable:
     area = CellRange(region.first, region.column, region.last, region.last_column)
     cells = grid.cut(area).turn()
     table = cut_table(cells, cells.first_row, cells.first_row, 1, context.recognises)
-    return _with_corner(table, context)
+    return _with_corner(_with_units_below(table), context)
+
+
+def _with_units_below(table: FoundTable) -> FoundTable:
+    """Take units that stand behind the readings ("Gain | 20.5 | dB"): a row, as the table is turned, of nothing else."""
+    if table.units_row is not None:
+        return table
+    for row in table.rows.tolist():
+        texts = {header.column: table.grid.value(row, header.column) for header in table.headers}
+        filled = [value for value in texts.values() if not is_blank(value)]
+        if len(filled) < 2 or not all(_is_unit(value) for value in filled):
+            continue
+        headers = tuple(with_unit(table.grid, header, row) for header in table.headers)
+        return replace(table, headers=headers, rows=table.rows[table.rows != row])
+    return table
+
+
+def _is_unit(value: Value) -> bool:
+    return isinstance(value, str) and known_unit(value.strip()) is not None and not looks_numeric(value)
 
 
 def _region(grid: Grid, top: int, stop: int, context: Context) -> Region | None:
@@ -98,9 +116,7 @@ def _label_column(grid: Grid, row: int) -> int | None:
     filled = [(column, value) for column, value in enumerate(grid.row(row), start=1) if not is_blank(value)]
     if len(filled) < 2 or not _is_label(filled[0][1]):
         return None
-    rest = [value for _, value in filled[1:]]
-    if isinstance(rest[0], str) and known_unit(rest[0].strip()) is not None and not looks_numeric(rest[0]):
-        rest = rest[1:]
+    rest = [value for _, value in filled[1:] if not _is_unit(value)]
     readings = sum(map(is_reading, rest))
     return filled[0][0] if readings and 2 * readings > len(rest) else None
 
