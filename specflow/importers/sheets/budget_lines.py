@@ -102,7 +102,10 @@ LAYOUT = SheetLayout(
             aliases=("Quantity", "Figure"),
             field="lines",
             required=True,
-            guidance="gain, insertion_loss, noise_figure, iip3, oip3, op1db, antenna_gain; intercepts name their port.",
+            guidance=(
+                "gain, insertion_loss, noise_figure, iip3, oip3, op1db, antenna_gain; intercepts name their port. Also "
+                "image_rejection, rejection, dc_power, drain_efficiency, phase_noise, blocking_level."
+            ),
             example="gain",
         ),
         SheetColumn(
