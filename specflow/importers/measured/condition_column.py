@@ -52,9 +52,14 @@ def condition_of(heading: Heading, dimension: KnownDimension, unit: FoundUnit, r
 def axis_unit(dimension: KnownDimension, unit: FoundUnit, stated: Stated) -> FoundUnit:
     """The unit of a column; where it has none that of the axis, as stated above the table, if it can be."""
     said = stated.text("axis_unit")
+    spelled = known_unit(said) if said else None
+    if unit.unit and spelled is not None and dimension.name == "frequency":
+        own = known_unit(unit.unit)
+        differs = own is not None and own != spelled and own.dimension == spelled.dimension
+        where = stated.by("axis_unit").removeprefix("stated in ")
+        return FoundUnit(problem=f"{unit.source} says {unit.unit}, {where} says {said}") if differs else unit
     if unit.unit or unit.problem or not said or not dimension.unit:
         return unit
-    spelled = known_unit(said)
     if spelled is None or not compatible(spelled, parse_unit(dimension.unit)):
         return unit
     slip = slip_of(format_unit(spelled))

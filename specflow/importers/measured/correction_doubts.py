@@ -8,7 +8,7 @@ from collections.abc import Iterator, Sequence
 import numpy as np
 from numpy.typing import NDArray
 
-from specflow.importers.measured.result import Question
+from specflow.importers.measured.result import Question, Role
 from specflow.importers.measured.work import TableWork
 from specflow.model.base import code_key
 from specflow.model.correction import Correction
@@ -16,6 +16,9 @@ from specflow.model.evidence import EvidenceTable, ValueColumn
 
 _FEWEST, _MOST = 3, 0.9  # of readings that must be found again
 _DIGITS = 0.0051  # dB: a corrected reading may have been written with two decimals
+_IN_HEADER = re.compile(
+    r"\bcorr(?:ected|\.)|\bincl(?:uding|\.)|\bde-?embedded\b|\bwith (?:path|cable) loss", re.IGNORECASE
+)
 _RAW = ("no", "raw", "not")
 _REMEDY = "--state corrected=no says that the readings are raw, whatever the file says; else leave the correction out"
 
@@ -38,6 +41,10 @@ def _already_in(work: TableWork, named: Sequence[Correction]) -> Iterator[Questi
             f"the file says {one.key}: {one.text}; a correction would be in twice",
             _REMEDY,
         )
+    for value in work.of(Role.VALUE):
+        if _IN_HEADER.search(value.header.text):
+            what = f"the header {value.header.text!r} says that its readings are corrected"
+            yield Question("correction", value.header.cell, what, _REMEDY)
     said = [*work.stated.unused, *(reading.meaning for reading in work.stated.readings if reading.cell)]
     for correction in named:
         word = re.compile(rf"(?<![\w-]){re.escape(correction.id)}(?![\w-])", re.IGNORECASE)

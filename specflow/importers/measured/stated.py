@@ -19,6 +19,7 @@ from specflow.conditions import (
     unlocated_temperature_hint,
 )
 from specflow.errors import UnitError
+from specflow.importers.measured.cell_units import slip_of
 from specflow.importers.measured.day import day_first, read_day
 from specflow.importers.measured.facts import Fact
 from specflow.importers.measured.formats import format_of
@@ -386,4 +387,7 @@ def _number(name: str, wanted: str, text: str, unit: str, by: str) -> StatedCond
     if not compatible(quantity.unit, parse_unit(wanted or "1")):
         return f"{title} in {quantity.unit}: expected is a unit like {wanted or 'none'}"
     spelled = format_unit(quantity.unit)
+    slip = "" if by == PERSON else slip_of(spelled)
+    if slip:
+        return f"{title} {text}: {slip}"
     return StatedCondition(name, float(quantity.value), "" if spelled == "1" else spelled, by)

@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 from specflow.errors import UnitError
+from specflow.importers.measured.cell_units import brought, slip_of
 from specflow.importers.measured.column import ColumnMeaning, Heading
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.correction_units import unit_when_corrected
+from specflow.importers.measured.header_text import known_unit
 from specflow.importers.measured.quantity_text import NamedQuantity, density_of
 from specflow.importers.measured.result import Role
-from specflow.importers.measured.stated import Stated
+from specflow.importers.measured.stated import MAPPING, PERSON, Stated
 from specflow.importers.measured.unit_source import FoundUnit
 from specflow.model.evidence import SpectrumKind
 from specflow.model.parameter import Parameter, QuantityIdentity
@@ -55,6 +57,8 @@ def value_of(
     """Read a column of values of ``parameter``; a unit that is missing or of another kind is a question."""
     if not unit.unit and not unit.problem:
         unit = _stated_unit(parameter, stated)
+    elif other := _other_unit(unit, stated):
+        return heading.ask_unit(other, parameter.unit)
     if not unit.unit:
         return heading.ask_unit(
             unit.problem or f"{parameter.title} without a unit", parameter.unit, "" if unit.problem else "unit"
@@ -97,6 +101,17 @@ def value_of(
     )
 
 
+def _other_unit(unit: FoundUnit, stated: Stated) -> str:
+    """Say that the file states another unit of the same quantity than the column has: dBm above, dBW in the header."""
+    said = stated.said.get("unit")
+    if said is None or said.by in (PERSON, MAPPING) or unit.source in (PERSON, "the mapping"):
+        return ""
+    written, own = known_unit(said.text), known_unit(unit.unit)
+    if written is None or own is None or written == own or not brought(written, own):
+        return ""
+    return f"{unit.source} says {own}, {said.by.removeprefix('stated in ')} says {written}"
+
+
 def _stated_unit(parameter: Parameter, stated: Stated) -> FoundUnit:
     """The unit that is stated for the table; a parameter that is a plain number needs none."""
     if stated.text("unit"):
@@ -121,6 +136,9 @@ def _bandwidth(heading: Heading, parameter: Parameter, unit: str, stated: Stated
     amount = parse_quantity(text)
     if amount.unit.dimension != "frequency":
         raise UnitError(f"the bandwidth {text!r} is no frequency")
+    slip = "" if heading.hints.bandwidth or stated.by("bandwidth") == PERSON else slip_of(str(amount.unit))
+    if slip:
+        raise UnitError(f"the bandwidth {text}: {slip}")
     return float(amount.value) * amount.unit.scale
 
 

@@ -105,6 +105,12 @@ def test_the_person_may_say_that_readings_are_raw(tmp_path: Path) -> None:
     assert low(table, "EIRP") == pytest.approx([43.1, 44.2, 45.6])
 
 
+def test_a_header_that_says_corrected_is_asked_about(tmp_path: Path) -> None:
+    said = {"column B": "eirp"}
+    asked = questions(eirp(tmp_path, header="EIRP corrected (dBm)", **said))
+    assert "B2: the header 'EIRP corrected (dBm)' says that its readings are corrected" in asked
+
+
 @pytest.mark.parametrize("text", ["no", "off", "0 dB", "not applied"])
 def test_a_correction_that_was_switched_off_is_no_doubt(tmp_path: Path, text: str) -> None:
     taken(eirp(tmp_path, ["Path loss correction", text]))

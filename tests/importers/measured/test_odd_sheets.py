@@ -197,6 +197,15 @@ TAKEN = {
 
 ASKED = {
     "a power density by its product": Asked(under(["Gain (mW/cm*cm)"], [1, 2, 3]), "B1", "Gain in mW/cm²"),
+    "a unit above and another in the header": Asked(
+        under(["Output power (dBW)"], [1, 2, 3], above=[["YUnit", "dBm"]]), "B3", "says dBW, B1 says dBm"
+    ),
+    "an axis with two units": Asked(
+        [["XUnit", "Hz"], [], ["Frequency (MHz)", "Gain (dB)"], [2000, 20]], "A3", "says MHz, B1 says Hz"
+    ),
+    "a frequency above in milli": Asked(
+        [["Frequency", "2000 mHz"], [], ["Vdd (V)", "Gain (dB)"], [5, 20]], "B1", "differ by nine decades"
+    ),
     "decibels of nothing": Asked(under(["Gain [dBX]"], [1, 2, 3]), "B1", "unit 'dBX' is not known"),
     "milli or mega": Asked(
         [["f (mHz)", "Gain (dB)"], [2000, 20]], "A1", "mHz and MHz differ by nine decades"
