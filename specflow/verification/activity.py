@@ -39,6 +39,7 @@ class ActivityOutcome:
     at all; ``stale``: a point is unproved and stale evidence stands there.
     """
 
+    activity: Activity
     result: ActivityResult
     items: Sequence[ItemPoints]
     failing: Sequence[tuple[ItemPoints, Flags]]
@@ -91,7 +92,7 @@ def summarise(
     )
     counted = any(np.count_nonzero(one.counts) for one in items)
     stale = any(_needs_re_verification(one) for one in chosen)
-    return ActivityOutcome(result, chosen, failing, verdicts, counted, stale)
+    return ActivityOutcome(activity, result, chosen, failing, verdicts, counted, stale)
 
 
 def _needs_re_verification(one: ItemPoints) -> bool:

@@ -81,6 +81,8 @@ def _open_reason(facts: Facts, reason: Label) -> str:
     parts = [reason.value]
     if reason is Label.WAIVER_EXCEEDED:
         parts = list(facts.waiving.exceeded)
+    if reason is Label.READY and facts.not_representative:
+        parts.append(f"proved on {', '.join(facts.not_representative)}")
     if facts.nonconformances:
         parts.append(f"{', '.join(facts.nonconformances)} open")
         if facts.fails and facts.waiving.all_covered:

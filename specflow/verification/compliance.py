@@ -17,7 +17,8 @@ from specflow.verification.waiving import NO_WAIVER, Waiving
 class Facts:
     """What the axes, the label and the close-out of a requirement are derived from.
 
-    ``counted``: something counts; ``in_progress``: there are readings, which may not.
+    ``counted``: something counts; ``in_progress``: there are readings, which may not. ``not_representative`` are the
+    items on which a qualification was proved that are no hardware to be qualified.
     """
 
     applicable: bool = True
@@ -38,6 +39,7 @@ class Facts:
     waiving: Waiving = NO_WAIVER
     approved: bool = False
     nonconformances: tuple[str, ...] = ()
+    not_representative: tuple[str, ...] = ()
     open_children: tuple[str, ...] = ()
     not_applicable_reason: str = ""
 

@@ -45,7 +45,8 @@ _SERVES: dict[Method, frozenset[Method]] = {
     Method.ANALYSIS: frozenset({Method.ANALYSIS, Method.TEST}),
     Method.SIMILARITY: frozenset({Method.SIMILARITY, Method.ANALYSIS, Method.TEST}),
 }
-_OBSERVED = frozenset({Method.TEST, Method.DEMONSTRATION, Method.INSPECTION})
+#: Methods that observe a specimen.
+OBSERVED = frozenset({Method.TEST, Method.DEMONSTRATION, Method.INSPECTION})
 _HARDWARE = {one: place for place, one in enumerate(HardwareType)}
 _STAGES = tuple(Stage)
 
@@ -74,7 +75,7 @@ def is_of_design(source: Source) -> bool:
 
 def is_about_design(table: EvidenceTable) -> bool:
     """Whether a table is about the design: reasoned, not observed on a specimen."""
-    return table.method not in _OBSERVED
+    return table.method not in OBSERVED
 
 
 def credit(
@@ -174,7 +175,7 @@ def _item_reason(
 
 
 def _is_representative(activity: Activity, source: Source, item: str, workspace: Workspace) -> bool:
-    if source.table.method not in _OBSERVED:
+    if source.table.method not in OBSERVED:
         return True
     return _HARDWARE[workspace.hardware_type(item)] >= _HARDWARE[activity.credit_from]
 
@@ -183,7 +184,7 @@ def _rank(activity: Activity, source: Source, representative: bool, workspace: W
     table = source.table
     if code_key(table.file) in workspace.datasheets:
         return ESTIMATE
-    if table.method in _OBSERVED:
+    if table.method in OBSERVED:
         early = activity.planned and _STAGES.index(table.stage) < _STAGES.index(activity.stage)
         return REPRESENTATIVE if representative and not early else LESS_REPRESENTATIVE
     if table.method is Method.SIMILARITY:

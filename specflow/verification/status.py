@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from dataclasses import replace
 
 import numpy as np
@@ -10,9 +10,9 @@ import numpy as np
 from specflow.errors import ConditionsError, ExpressionError
 from specflow.limits.tree import undefined_in
 from specflow.model.base import code_key
-from specflow.model.block import Tier
+from specflow.model.block import HardwareType, Tier
 from specflow.model.limit import LimitState
-from specflow.model.requirement import Activity, Requirement
+from specflow.model.requirement import Activity, Requirement, Stage
 from specflow.model.verdict import CloseOut, GoverningPoint, PointsState, RequirementStatus, Verdict
 from specflow.verification.activity import ActivityOutcome
 from specflow.verification.applicability import applicability
@@ -20,12 +20,15 @@ from specflow.verification.assessment import Assessment
 from specflow.verification.case import required_activities
 from specflow.verification.closeout import label_and_close_out, waived
 from specflow.verification.compliance import Facts, compliance
+from specflow.verification.credit import OBSERVED
 from specflow.verification.decisions import Decisions
 from specflow.verification.docket import Docket
 from specflow.verification.points import Failing
 from specflow.verification.splits import declared
 from specflow.verification.waiving import waiving
 from specflow.verification.workspace import Workspace
+
+_LESSER = (HardwareType.BREADBOARD, HardwareType.ENGINEERING)
 
 
 def status_of(
@@ -99,7 +102,28 @@ def with_evidence(
         split_declared=split,
         split_remarks=remarks,
         waiving=waiving(requirement, decisions.waivers.get(code_key(requirement.id), ()), failing, workspace),
+        not_representative=tuple(dict.fromkeys(_not_representative(outcomes, workspace))),
     )
+
+
+def _not_representative(outcomes: Sequence[ActivityOutcome], workspace: Workspace) -> Iterator[str]:
+    """Yield the items of lower hardware on which a planned qualification is proved, each with what it is.
+
+    Credit is normally taken on a qualification or production item; on lesser ones by agreement (NASA/SP-2016-6105
+    Rev2, 6.1.1.2.4), so the board is told.
+    """
+    for outcome in outcomes:
+        activity = outcome.activity
+        if (
+            not activity.planned
+            or activity.stage is not Stage.QUALIFICATION
+            or activity.method not in OBSERVED
+        ):
+            continue
+        for one in outcome.items:
+            hardware = workspace.hardware_type(one.item)
+            if hardware in _LESSER and outcome.result.k and one.results.k:
+                yield f"{hardware.value} hardware ({one.item or 'no item is named'})"
 
 
 def _failing(found: Assessment) -> Failing:

@@ -7,11 +7,12 @@ from dataclasses import replace
 
 import pytest
 
+from specflow.model.requirement import Method
 from specflow.model.verdict import CloseOut, Compliance, Label, Verdict
 from specflow.verification.closeout import label_and_close_out
 from specflow.verification.compliance import Facts, compliance
 from specflow.verification.waiving import Waiving
-from tests.builders import an_activity, an_evidence_table
+from tests.builders import an_activity, an_evidence_table, an_item, some_evidence
 from tests.verification.evaluating import status_of
 
 
@@ -143,3 +144,29 @@ def test_readings_that_may_not_count_are_no_missing_plan() -> None:
     table = an_evidence_table(accepted_by="", provisional=True)
     assert status_of(an_activity(planned=False), table).label is Label.PARTIALLY_VERIFIED
     assert status_of(an_activity(planned=True), table).label is Label.PLANNED
+
+
+@pytest.mark.parametrize(
+    ("hardware", "stage", "reason"),
+    [
+        ("engineering", "qualification", "ready for close-out; proved on engineering hardware (LNA-1)"),
+        ("qualification", "qualification", "ready for close-out"),
+        ("production", "qualification", "ready for close-out"),
+        ("engineering", "development", "ready for close-out"),
+    ],
+)
+def test_a_qualification_proved_on_lesser_hardware_says_so(hardware: str, stage: str, reason: str) -> None:
+    status = status_of(
+        an_item(hardware_type=hardware),
+        an_activity(stage=stage),
+        an_evidence_table(stage=stage),
+        T_1=some_evidence(),
+    )
+    assert (status.label, status.close_out_reason) == (Label.READY, reason)
+
+
+def test_what_nobody_planned_or_an_analysis_proves_is_of_no_hardware() -> None:
+    assert status_of(an_activity(planned=False)).close_out_reason == "ready for close-out"
+    table = an_evidence_table(method=Method.ANALYSIS, simulation_validated="yes")
+    status = status_of(an_activity(method=Method.ANALYSIS), table, T_1=some_evidence(items=[None] * 3))
+    assert status.close_out_reason == "ready for close-out"

@@ -84,7 +84,10 @@ def test_an_open_nonconformance_keeps_a_waived_row_open() -> None:
 def test_an_open_nonconformance_is_no_row_ready_to_be_called_closed() -> None:
     report = Nonconformance(id="NCR-1", requirement="R-1", description="scratch")
     status = status_of(report)
-    assert (status.label, status.close_out_reason) == (Label.READY, "ready for close-out; NCR-1 open")
+    assert (status.label, status.close_out_reason) == (
+        Label.READY,
+        "ready for close-out; proved on engineering hardware (LNA-1); NCR-1 open",
+    )
 
 
 SPURIOUS = a_quantity("spurious_emission")
