@@ -59,6 +59,9 @@ class Candidate:
     leftover: tuple[str, ...] = ()
 
 
+_MOST_KEPT = 4096
+
+
 @dataclass(frozen=True)
 class Dictionary:
     """All parameters known to a project, by code key."""
@@ -82,6 +85,19 @@ class Dictionary:
         units row, where the header has none. The unit chooses among parameters of one name and unlike kinds ("gain"
         in dB and in dBi); it never turns the only reading down.
         """
+        known = self._matched.get((header, unit))
+        if known is None:
+            if len(self._matched) >= _MOST_KEPT:
+                self._matched.clear()
+            known = self._matched[header, unit] = tuple(self._match(header, unit))
+        return list(known)
+
+    @cached_property
+    def _matched(self) -> dict[tuple[str, str], tuple[Candidate, ...]]:
+        """Headers that were matched before: two hundred sheets have the same few."""
+        return {}
+
+    def _match(self, header: str, unit: str) -> Sequence[Candidate]:
         parts = split_header(header)
         if unit and not parts.unit:
             parts = replace(parts, unit=unit, every=(*parts.every, *tokens(unit)))

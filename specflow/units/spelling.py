@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import re
 import unicodedata
+from functools import lru_cache
 
 # UTF-8 read as Windows-1252: the damaged forms of the signs that units and numbers use.
 _DAMAGED = {
@@ -39,6 +40,7 @@ def repaired(text: str) -> str:
     return _SPACE.sub(" ", text.translate(_INVISIBLE).translate(_MINUS)).strip()
 
 
+@lru_cache(maxsize=4096)  # two hundred sheets have the same few headers
 def unit_spelling(text: str) -> str:
     """Bring the text of a unit to plain signs: m² as m2, both micro signs as µ, every product sign as *."""
     text = unicodedata.normalize("NFKC", repaired(text).replace("º", "°")).translate(_MINUS)

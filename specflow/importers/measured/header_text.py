@@ -13,6 +13,7 @@ from specflow.units import Unit, parse_unit
 
 _BRACKET = re.compile(r"\(([^()]*)\)|\[([^\[\]]*)\]|\{([^{}]*)\}")
 _FACTOR = r"k\s*=\s*(?:[0-9]+(?:[.,][0-9]+)?)"
+_FOOTNOTE_MARK = re.compile(r"(?<=[)\]])\s*[¹²³⁴⁵⁶⁷⁸⁹*†‡]+$")
 _COVERAGE = re.compile(rf"[(\[]\s*{_FACTOR}\s*[)\]]|[,;]?\s*\b{_FACTOR}", re.IGNORECASE)
 _PLUS_MINUS = re.compile(r"^(?:±|\+/-)\s*(?=\w)")
 _PLACE = re.compile(r"\s*@\s*(?P<place>.+)$")
@@ -60,7 +61,7 @@ class HeaderText:
 def read_header(text: str) -> HeaderText:
     """Take a header apart: "Gain @ antenna face (dB)", "EIRP / dBm", "f, GHz", "U (dB), k=2", "Temp °C"."""
     whole = " ".join(text.split())
-    rest, k = without_coverage(whole)
+    rest, k = without_coverage(_FOOTNOTE_MARK.sub("", whole))
     rest, scale = _without_scale(rest)
     rest, unit, odd, bracketed = _without_brackets(rest)
     place = _PLACE.search(rest)
@@ -104,6 +105,7 @@ def known_unit(text: str) -> Unit | None:
         return None
 
 
+@lru_cache(maxsize=4096)
 def header_key(text: str) -> str:
     """Return what two headers are compared by: case, blanks and punctuation do not matter, the unit does."""
     return re.sub(r"[\s_.,;:*]+", "", text.casefold().replace("[", "(").replace("]", ")"))
