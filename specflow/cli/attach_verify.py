@@ -27,4 +27,6 @@ def verify_attached(paths: list[Path], project: str, *, as_json: bool) -> int:
     for path in found.strangers:
         say(f"{shown_path(path)}: not attached")
     say(found.counts())
+    if any(check.state == "vanished" for check in found.checks) and not any(path.is_dir() for path in paths):
+        say("where the files lie elsewhere: specflow attach --verify FOLDER")
     return int(ExitCode.CLEAN if found.is_clean else ExitCode.FINDINGS)

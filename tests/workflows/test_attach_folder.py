@@ -22,6 +22,7 @@ from specflow.workflows.attach import (
 )
 from specflow.workflows.attach_folder import FolderRun, attach_folder, copy_to_try_on, folder_job
 from specflow.workflows.found_files import find_files
+from specflow.workflows.verify_files import verify_files
 from tests.builders import a_block, a_project, adding
 from tests.conftest import noon
 from tests.importers.measured.make import PROJECT, book
@@ -227,3 +228,22 @@ def test_what_was_left_out_once_is_unchanged_the_next_time(store: ProjectStore, 
     rest = Decision("A. B.", take_rest=True)
     assert run_of(store, results, rest).files[0].words == "1 cells or rows left out"
     assert [str(one.outcome) for one in run_of(store, results, rest).files] == ["unchanged"]
+
+
+@pytest.mark.postgres
+def test_a_project_on_a_server_is_tried_on_a_copy_and_keeps_its_files(database: str, results: Path) -> None:
+    book(results / "a.xlsx", GAIN)
+    with create_project(database, a_project(), clock=noon) as store:
+        store.apply(adding(*PROJECT), by="A. B.")
+        before = store.revision
+        job = folder_job([results], AttachOptions(), Decision("A. B.", keep=True))
+        with copy_to_try_on(store) as copy:
+            assert said(attach_folder(copy, job)) == {"a.xlsx": ("accepted", ("EV-1",))}
+        assert store.revision == before
+        assert said(attach_folder(store, job)) == {"a.xlsx": ("accepted", ("EV-1",))}
+        assert store.file_bytes("F-1") == (results / "a.xlsx").read_bytes()
+        with pytest.raises(DocumentError, match="does not know where its files lie"):
+            verify_files(store)
+        assert verify_files(store, [results]).is_clean
+        (results / "a.xlsx").unlink()
+        assert [str(check.state) for check in verify_files(store, [results]).checks] == ["kept copy"]

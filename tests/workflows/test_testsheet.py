@@ -11,6 +11,8 @@ from typing import Any
 
 import openpyxl
 import pytest
+from hypothesis import HealthCheck, given, settings
+from hypothesis import strategies as st
 from openpyxl.workbook.workbook import Workbook
 from openpyxl.worksheet.worksheet import Worksheet
 
@@ -567,3 +569,52 @@ def test_rows_that_are_hidden_are_rejected_unless_they_are_asked_for(
     assert table.values == 11 and "hidden" in table.rejected[0].reason
     preview = preview_attach(store, path, AttachOptions(include_hidden_rows=True))
     assert preview.values == 12
+
+
+READING = st.one_of(
+    st.floats(-200, 200, allow_nan=False).map(lambda value: float(f"{value:.6g}")), st.integers(-60, 60)
+)
+
+
+@settings(max_examples=12, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
+@given(st.lists(st.one_of(st.none(), READING), min_size=12, max_size=12))
+def test_any_values_come_back_as_they_were_written_at_the_conditions_of_their_rows(
+    store: ProjectStore, tmp_path: Path, values: list[float | None]
+) -> None:
+    path = tmp_path / "t.xlsx"
+    path.unlink(missing_ok=True)
+    sheet = made(store, requirements=["G-1"])
+    write_testsheet(sheet, path)
+    fill(path, lambda row: {"Value": values[int(row["No."]) - 1], "Item": "LNA-1"})
+    tables = look(store, path).measurements.tables
+    filled = [number for number, value in enumerate(values) if value is not None]
+    assert sum(table.values for table in tables) == len(filled)
+    rows = dict(sheet.workbook.sheets[0].rows)
+    for table in tables:
+        assert table.columns is not None and table.document is not None
+        [read] = table.columns.values.values()
+        numbers = {row: number for number, row in enumerate(sorted(rows))}
+        for place, row in enumerate(table.columns.source_rows.tolist()):
+            assert read.low[place] == read.high[place] == values[numbers[row]]
+            for one in rows[row].conditions:
+                assert table.columns.conditions.numeric[one.dimension][place] == one.value
+
+
+@settings(max_examples=25, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
+@given(st.data())
+def test_any_protected_cell_that_is_edited_is_found(
+    store: ProjectStore, tmp_path: Path, data: st.DataObject
+) -> None:
+    sheet = made(store)
+    path = tmp_path / "t.xlsx"
+    path.unlink(missing_ok=True)
+    write_testsheet(sheet, path)
+    one = data.draw(st.sampled_from(sheet.workbook.sheets))
+    cell = data.draw(
+        st.sampled_from([cell for cell in one.cells if not cell.is_open and cell.value is not None])
+    )
+    entry = data.draw(st.one_of(st.none(), st.text("abc -12", min_size=1, max_size=6), st.integers(-99, 99)))
+    same = entry == cell.value or (isinstance(entry, str) and entry.strip() == cell.value)
+    edited(path, lambda workbook: workbook[one.name].__setitem__(cell.address, entry))
+    found = [(place, what) for place, what in asked(store, path) if place == cell.address]
+    assert bool(found) is not same, (cell, entry)

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import sqlite3
 from collections.abc import Iterator
+from contextlib import closing
 from pathlib import Path
 from typing import Any
 
@@ -263,3 +265,26 @@ def test_no_path_of_a_machine_is_stored(tmp_path: Path) -> None:
         assert [file.path for file in store.load().all(EvidenceFile)] == ["../results/a.xlsx", ""]
         assert states(verify_files(store)) == ["unchanged", "vanished"]
         assert states(verify_files(store, [far])) == ["vanished", "unchanged"]
+
+
+def test_a_kept_copy_that_is_damaged_is_not_given_out(store: ProjectStore, tmp_path: Path) -> None:
+    path = attach(store, book(tmp_path / "gain.xlsx", GAIN), KEEP)
+    with closing(sqlite3.connect(tmp_path / "p.specflow")) as connection:
+        connection.execute("UPDATE file_copy SET data = substr(data, 1, 100)")
+        connection.commit()
+    with pytest.raises(DocumentError, match="the kept copy is damaged"):
+        kept_copy(store, "F-1")
+    assert states(verify_files(store)) == ["unchanged"]
+    path.unlink()
+    found = verify_files(store)
+    assert states(found) == ["damaged copy"] and not found.is_clean
+
+
+def test_a_file_whose_tables_are_all_superseded_need_not_be_there(
+    store: ProjectStore, tmp_path: Path
+) -> None:
+    path = attach(store, book(tmp_path / "gain.xlsx", GAIN[:2]))
+    again = book(tmp_path / "again.xlsx", [HEADER, ["LNA-1", 27.5, 20.4, 0.4]])
+    attach(store, again, Decision("A. B.", supersedes=("EV-1",)))
+    path.unlink()
+    assert states(verify_files(store)) == ["replaced", "unchanged"] and verify_files(store).is_clean
