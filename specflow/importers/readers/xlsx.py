@@ -27,8 +27,9 @@ MAX_CELLS = 16_000_000
 MAX_STREAMED_CELLS = 64_000_000
 """The largest used range in typed columns, which take eight bytes a number where a Python list takes 32."""
 
-STREAMED_BYTES = 32 * 1024 * 1024
-"""Sheets whose XML is longer are read into typed columns: about 700,000 cells."""
+STREAMED_BYTES = 256 * 1024
+"""Sheets whose XML is longer, of more than about 6,000 cells, are read into typed columns, which takes half the time of
+bulk reading and a quarter of its memory. Below it hardly matters, and rows in lists are quicker to walk over."""
 
 _UNIQUE = re.compile(rb"uniqueCount\s*=\s*[\"']([^\"']*)")
 _TEXTS, _MACROS = "xl/sharedStrings.xml", "xl/vbaProject.bin"
