@@ -16,7 +16,7 @@ from specflow.model.verdict import PointResults, RecordRef, Verdict
 from specflow.rules.base import Found
 from specflow.rules.facts import FAILS, Facts
 from specflow.rules.words import at_point, counted
-from specflow.units import converter, parse_reading, parse_unit
+from specflow.units import converter, parse_reading_with_unit, parse_unit
 
 _PASSED = (
     "pass",
@@ -192,8 +192,8 @@ def _other_verdict(text: str, ours: Verdict) -> str:
 def _other_limit(text: str, said: StatedColumn, unit: str, ends: Mapping[str, float]) -> str:
     """Compare a limit as written with ours; a side that is not said may be either of them."""
     try:
-        reading = parse_reading(text.lstrip("<>≤≥= "))
-        step = converter(parse_unit(said.unit or unit or "1"), parse_unit(unit or "1"))
+        reading, written = parse_reading_with_unit(text.lstrip("<>≤≥= "))
+        step = converter(written or parse_unit(said.unit or unit or "1"), parse_unit(unit or "1"))
         stated = float(step(getattr(reading, "lo", math.nan)))
     except UnitError:
         return ""

@@ -43,8 +43,8 @@ def mapping_settles(mapping: LayoutMapping, header: str, letter: str) -> bool:
     return mapped is not None and bool(mapped.role or mapped.parameter or mapped.dimension)
 
 
-def _are_bandwidths(words: set[str], unit: str) -> bool:
-    return all(bandwidth_in(word, unit) is not None for word in words)
+def _are_bandwidths(role: Role, words: set[str], unit: str) -> bool:
+    return role is Role.BANDWIDTH and bool(words) and all(bandwidth_in(word, unit) is not None for word in words)
 
 
 @dataclass(frozen=True, slots=True)
@@ -74,9 +74,10 @@ def read_constants(table: FoundTable, mapping: LayoutMapping, stated: Stated) ->
             continue
         words = {cell_text(value).strip() for value in cells if not is_blank(value)}
         role = Role.BANDWIDTH if name == "bandwidth" else Role.REMARK
+        gaps = role is Role.BANDWIDTH and any(map(is_blank, cells))
         if len(words) > 1 and name in _MAY_VARY:
             found[header.column] = ConstantColumn(role, f"the {name} of each row; kept as a remark")
-        elif len(words) > 1 and role is Role.BANDWIDTH and _are_bandwidths(words, parts.unit or header.unit):
+        elif (len(words) > 1 or gaps) and _are_bandwidths(role, words, parts.unit or header.unit):
             found[header.column] = ConstantColumn(role, "the bandwidth of each row")
         elif len(words) > 1:
             problem = f"says more than one {name.replace('_', ' ')}: {', '.join(sorted(words)[:4])}"

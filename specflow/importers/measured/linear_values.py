@@ -13,7 +13,9 @@ from specflow.units import parse_unit
 def doubt_linear(work: TableWork, meaning: ColumnMeaning, numbers: Numbers) -> None:
     """Reject negative readings of a quantity that has a level (power, amplitude, their ratios); say how many are 0."""
     parameter = meaning.parameter
-    if parameter is None or parameter.log_factor is None or parse_unit(meaning.unit or "1").is_log:
+    if parameter is None or parse_unit(meaning.unit or "1").is_log:
+        return
+    if parameter.log_factor is None and not parameter.key.endswith("noise_temperature"):
         return
     reason = f"{parameter.title} in {meaning.unit} cannot be negative: an offset of the instrument, or a wrong sign"
     negative = np.flatnonzero(np.isfinite(numbers.high) & (numbers.high < 0))

@@ -92,9 +92,9 @@ def _kinds(work: TableWork) -> list[RowKind] | None:
 
 
 def _several(work: TableWork, meaning: ColumnMeaning) -> bool:
-    return (
-        len({cell_text(value).strip() for value in work.table.cells(meaning.column).at(work.rows)} - {""}) > 1
-    )
+    """Whether the rows of a column differ, be it that some say nothing."""
+    cells = work.table.cells(meaning.column).at(work.rows)
+    return len({cell_text(value).strip() for value in cells}) > 1
 
 
 def _hertz(work: TableWork, meaning: ColumnMeaning, place: int) -> float | None:

@@ -28,7 +28,7 @@ def with_scale(meaning: ColumnMeaning, entry: ColumnMapping) -> ColumnMeaning:
         return meaning
     if entry.scale is not None:
         return replace(meaning, scale=entry.scale)
-    if stated is None:
+    if stated is None or stated.figure == "1":
         return meaning
     if stated.factor is not None:
         return replace(meaning, scale=stated.factor, reason=f"{meaning.reason}; in units of {stated.text}")

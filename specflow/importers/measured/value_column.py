@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import re
+
 from specflow.errors import UnitError
 from specflow.importers.measured.cell_units import brought, slip_of
 from specflow.importers.measured.column import ColumnMeaning, Heading
@@ -16,6 +18,8 @@ from specflow.model.evidence import SpectrumKind
 from specflow.model.parameter import Parameter, QuantityIdentity
 from specflow.parameters import suits
 from specflow.units import ONE, Kind, parse_quantity, parse_unit
+
+_RATIO = re.compile(r"^[fpnuµmkMG]?(?P<of>[VAW])(?:rms)?\s?/\s?[fpnuµmkMG]?(?P=of)(?:rms)?$")
 
 
 def named_value(
@@ -63,6 +67,9 @@ def value_of(
         return heading.ask_unit(
             unit.problem or f"{parameter.title} without a unit", parameter.unit, "" if unit.problem else "unit"
         )
+    ratio = _other_ratio(heading, parameter)
+    if ratio:
+        return heading.ask(ratio, 'export it in dB, or settle the parameter in a mapping: a ratio of its own kind')
     density = density_of(parameter, unit.unit, context.dictionary)
     if density is not None:
         parameter, reason = density, f"{reason}, in {unit.unit} its density"
@@ -99,6 +106,19 @@ def value_of(
         by_cell=unit.by_cell,
         spectrum=_spectrum(heading.hints.spectrum or stated.text("spectrum")),
     )
+
+
+def _other_ratio(heading: Heading, parameter: Parameter) -> str:
+    """Say that a ratio as written is of another kind than the parameter: V/V of amplitudes, a gain of powers."""
+    written = (heading.hints.unit or heading.parts.unit or heading.header.unit).strip("()[] ")
+    found = _RATIO.match(written)
+    if found is None or parameter.log_factor is None:
+        return ""
+    factor, kind = (10, "powers") if found["of"] == "W" else (20, "amplitudes")
+    if factor == parameter.log_factor:
+        return ""
+    own = "powers" if parameter.log_factor == 10 else "amplitudes"
+    return f"{written} is a ratio of {kind}, {parameter.title} is one of {own}"
 
 
 def _other_unit(unit: FoundUnit, stated: Stated) -> str:

@@ -179,6 +179,14 @@ TAKEN = {
         {"EIRP": [40, 41, 42]},
         words=["not used: B3: Attenuation = 20 dB"],
     ),
+    "a row without its bandwidth": Taken(
+        [["f (MHz)", "Spurious (dBm)", "RBW"], [100, -60, "100 kHz"], [200, -61, None]],
+        {"Spurious (in 100000 Hz)": [-60, np.nan], "Spurious": [np.nan, -61]},
+    ),
+    "limits that are no numbers alone": Taken(
+        [["f (GHz)", "Gain (dB)", "Limit", "Verdict"], [28, 20, "≥ 19 dB", "met"]],
+        {"Gain": [20]},
+    ),
     "the plane of a cut": Taken(
         [["Cut: phi = 90 deg"], ["Angle (deg)", "Gain (dBi)"], [0, 20], [1, 19.9]],
         {"Gain": [20, 19.9]},
@@ -197,6 +205,9 @@ TAKEN = {
 
 ASKED = {
     "a power density by its product": Asked(under(["Gain (mW/cm*cm)"], [1, 2, 3]), "B1", "Gain in mW/cm²"),
+    "a ratio of voltages under a gain": Asked(
+        under(["Gain (V/V)"], [10, 11, 12]), "B1", "V/V is a ratio of amplitudes, Gain is one of powers"
+    ),
     "a unit above and another in the header": Asked(
         under(["Output power (dBW)"], [1, 2, 3], above=[["YUnit", "dBm"]]), "B3", "says dBW, B1 says dBm"
     ),
