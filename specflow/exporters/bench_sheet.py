@@ -88,6 +88,7 @@ def _write_guide(sheet: Worksheet, workbook: BenchWorkbook, formats: Mapping[str
     for row, text in enumerate(texts, 2):
         sheet.set_row(row, 15 * max(len(wrap(text, _TEXT_WIDTH)), 1) + 3)
         sheet.write_string(row, 0, text, formats["wrapped"])
+    sheet.fit_to_pages(1, 0)
     sheet.protect("", _ALLOWED)
 
 

@@ -195,7 +195,7 @@ class _Layout:
 
     def _condition(self, row: int, place: int, condition: BenchCondition | None) -> None:
         if condition is None:
-            self._put(row, place, "cell", "")
+            self._cells.append(BenchCell(row=row, column=place, kind="cell"))
         elif condition.is_open:
             self._cells.append(
                 BenchCell(

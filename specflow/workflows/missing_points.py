@@ -65,7 +65,7 @@ class Missing:
     @property
     def notes(self) -> list[str]:
         """The same in sentences."""
-        return [f"{reason}: {', '.join(codes)}" for reason, codes in self.left_out.items()]
+        return [f"{', '.join(codes)}: {reason}" for reason, codes in self.left_out.items()]
 
 
 @dataclass(frozen=True, slots=True)

@@ -27,7 +27,7 @@ def test_it_writes_a_workbook_and_says_what_is_on_it(command: Command, project: 
     done = command("testsheet", "bench.xlsx", *AS_OF)
     assert done.code == ExitCode.CLEAN and done.out.splitlines()[-1] == "bench.xlsx"
     assert (
-        "left out: its limit is to be determined: PA-4" in done.err
+        "left out: PA-4: its limit is to be determined" in done.err
         and "specflow attach bench.xlsx" in done.err
     )
     workbook = openpyxl.load_workbook(tmp_path / "bench.xlsx")

@@ -179,8 +179,9 @@ def test_it_has_exactly_what_is_missing_and_says_what_it_leaves_out(store: Proje
     assert {point.stage for _, point in pa.rows} == {Stage.ACCEPTANCE} and len(pa.rows) == 5
     assert sheet.workbook.points == 12 + 2 * 5 + 5
     left_out = "; ".join(sheet.workbook.notes)
-    assert "to be determined: TBD-1" in left_out and "by analysis, not on a bench: ANA-1" in left_out
-    assert "has 2501 values, too many to be filled in; attach a trace over it: FINE-1" in left_out
+    assert "TBD-1: its limit is to be determined" in left_out
+    assert "ANA-1: by analysis, not on a bench" in left_out
+    assert "FINE-1: frequency 27.5 to 30 GHz has 2501 values, too many" in left_out
 
 
 @pytest.mark.parametrize(
@@ -470,7 +471,7 @@ def test_failing_points_are_left_out_unless_a_retest_is_asked_for(
     path = written(store, tmp_path / "t.xlsx", requirements=["G-1"])
     attach(store, fill(path, lambda row: good(row) | ({"Value": 18} if row["No."] == 1 else {})))
     assert made(store, requirements=["G-1"]).workbook.points == 0
-    assert "has failing points, which --retest adds: G-1" in made(store, requirements=["G-1"]).workbook.notes
+    assert "G-1: has failing points, which --retest adds" in made(store, requirements=["G-1"]).workbook.notes
     [point] = points(made(store, requirements=["G-1"], retest=True))
     assert (point.why, point.item) == (("fails",), "LNA-1")
 
