@@ -9,24 +9,32 @@ import numpy as np
 
 from specflow.conditions import find_dimension, is_unlocated_temperature
 from specflow.importers.measured.context import Context
+from specflow.importers.measured.facts import Fact, read_preamble
 from specflow.importers.measured.header_cells import read_headers
 from specflow.importers.measured.header_text import header_key, read_header
 from specflow.importers.measured.long_form import find_long
 from specflow.importers.measured.mapping_parts import LayoutMapping
+from specflow.importers.measured.names import canonical
 from specflow.importers.measured.result import Question
 from specflow.importers.measured.roles import role_of_words
 from specflow.importers.measured.tables import FoundTable, find_header, find_tables
 from specflow.importers.readers import CellRange, Grid, is_blank
 
 _MOST_COLUMNS = 2000
+_WIDEST_FACTS = 3
+_MOST_FACTS = 60
 
 
 @dataclass(frozen=True, slots=True)
 class Strips:
-    """A sheet cut into strips of columns; ``doubt`` where it may as well be one table."""
+    """A sheet cut into strips of columns; ``doubt`` where it may as well be one table.
+
+    ``facts`` are those of strips that hold nothing but keys with their values, beside a table.
+    """
 
     grids: tuple[Grid, ...]
     doubt: Question | None = None
+    facts: tuple[Fact, ...] = ()
 
 
 def strips_of(grid: Grid, context: Context) -> Strips:
@@ -43,6 +51,7 @@ def _at_gaps(grid: Grid, context: Context) -> Strips | None:
     runs = _written_runs(grid)
     if len(runs) < 2:
         return None
+    facts, runs = _without_facts(grid, runs)
     kept: list[tuple[int, int]] = [runs[0]]
     doubt: Question | None = None
     for run in runs[1:]:
@@ -53,9 +62,32 @@ def _at_gaps(grid: Grid, context: Context) -> Strips | None:
             kept.append(run)
         else:
             kept[-1] = (kept[-1][0], run[1])
-    if len(kept) < 2:
+    if len(kept) < 2 and not facts:
         return Strips((grid,), doubt) if doubt else None
-    return Strips(tuple(_strip(grid, run) for run in kept), doubt)
+    return Strips(tuple(_strip(grid, run) for run in kept), doubt, facts)
+
+
+def _without_facts(grid: Grid, runs: list[tuple[int, int]]) -> tuple[tuple[Fact, ...], list[tuple[int, int]]]:
+    """Take out the strips, right of the first, in which every row but a title is a key with its value."""
+    facts: list[Fact] = []
+    left = runs[:1]
+    for run in runs[1:]:
+        own = _facts_only(_strip(grid, run)) if run[1] - run[0] < _WIDEST_FACTS else ()
+        facts += own
+        left += [] if own else [run]
+    return tuple(facts), left
+
+
+def _facts_only(strip: Grid) -> tuple[Fact, ...]:
+    """The facts of a strip in which every row but a title is a key with its value; () for any other."""
+    rows = [
+        row for row in range(strip.first_row, strip.last_row + 1) if not all(map(is_blank, strip.row(row)))
+    ]
+    if len(rows) > _MOST_FACTS:
+        return ()
+    own = read_preamble(strip, strip.first_row, strip.last_row + 1).facts
+    known = sum(bool(canonical(fact.key)) for fact in own)
+    return own if known >= 2 and 2 * known >= len(own) and len(own) >= len(rows) - 1 else ()
 
 
 def _written_runs(grid: Grid) -> list[tuple[int, int]]:

@@ -46,6 +46,12 @@ class Context:
         )
 
     @cached_property
+    def item_names(self) -> tuple[str, ...]:
+        """Ids and serials of the items, the longest first."""
+        names = {name for one in self.snapshot.items for name in (one.id, one.serial) if name}
+        return tuple(sorted(names, key=lambda name: (-len(name), name)))
+
+    @cached_property
     def mappings(self) -> tuple[tuple[TableMapping, LayoutMapping], ...]:
         """The mappings that the project keeps, the latest first."""
         return tuple(

@@ -17,6 +17,7 @@ from specflow.importers.measured.directions import add_directions
 from specflow.importers.measured.document import Identity, Said, make_document
 from specflow.importers.measured.facts import states_something
 from specflow.importers.measured.header_text import header_key
+from specflow.importers.measured.items import is_item
 from specflow.importers.measured.located import LocatedTable
 from specflow.importers.measured.meaning import read_meanings
 from specflow.importers.measured.peak_list import read_peak_list, with_floors
@@ -113,7 +114,11 @@ def _asked_of_columns(work: TableWork) -> list[Question]:
     """The questions about columns; where it is asked how the table lies, numbers as headers are not asked about."""
     asked = [meaning for meaning in work.meanings if meaning.question]
     if work.table.doubts:
-        asked = [meaning for meaning in asked if not is_reading(meaning.header.text)]
+        asked = [
+            meaning
+            for meaning in asked
+            if not is_reading(meaning.header.text) and not is_item(meaning.header.text, work.context)
+        ]
     return [meaning.question for meaning in asked if meaning.question]
 
 

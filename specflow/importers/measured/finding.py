@@ -20,6 +20,8 @@ def find_all(grid: Grid, context: Context) -> tuple[FoundTable, ...]:
     """Return the tables of a sheet, from left to right and from top to bottom."""
     strips = strips_of(grid, context)
     found = [table for strip in strips.grids for table in _below_each_other(strip, context)]
+    if strips.facts:
+        found = [replace(table, facts=(*table.facts, *strips.facts)) for table in found]
     if strips.doubt is not None and found:
         found[0] = replace(found[0], doubts=(*found[0].doubts, strips.doubt))
     return tuple(found)

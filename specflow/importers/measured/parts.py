@@ -12,12 +12,13 @@ from specflow.importers.measured.context import Context
 from specflow.importers.measured.groups import group_parts
 from specflow.importers.measured.header_cells import HeaderCell
 from specflow.importers.measured.header_text import read_header
+from specflow.importers.measured.item_headers import item_pivots
 from specflow.importers.measured.long_form import find_long, long_parts
-from specflow.importers.measured.mapping_parts import ColumnMapping, LayoutMapping
+from specflow.importers.measured.mapping_parts import ColumnMapping, LayoutMapping, PivotMapping
 from specflow.importers.measured.place_facts import stated_here
 from specflow.importers.measured.placed import pivot_of
 from specflow.importers.measured.quantity_text import name_quantity
-from specflow.importers.measured.result import Role
+from specflow.importers.measured.result import Question, Role
 from specflow.importers.measured.roles import role_of_words, uncertainty_of
 from specflow.importers.measured.tables import FoundTable
 
@@ -39,16 +40,26 @@ def parts_of(table: FoundTable, mapping: LayoutMapping, context: Context) -> lis
         read_as = _others_unread(table, read_as)
     if table.pivots and not mapping.pivots:
         read_as = _with_axis(table, read_as)
-    pivots = mapping.pivots or (
-        () if _is_settled(mapping) else table.pivots or pivots_of_headers(table, context)
-    )
     if mapping.pivots or _is_settled(mapping):
-        table = replace(table, doubts=())
+        pivots, table = tuple(mapping.pivots), replace(table, doubts=())
+    else:
+        pivots, doubts = _recognised_pivots(table, context)
+        table = replace(table, doubts=(*table.doubts, *doubts))
     if pivots and (len(pivots) > 1 or _values_beside(table, replace(read_as, pivots=pivots), context)):
         return _pivot_parts(table, replace(read_as, pivots=pivots), context)
     if not pivots:
         return [(part, read_as) for part in group_parts(table, context)]
     return [(table, replace(read_as, pivots=pivots))]
+
+
+def _recognised_pivots(
+    table: FoundTable, context: Context
+) -> tuple[tuple[PivotMapping, ...], tuple[Question, ...]]:
+    """Pivots that the headers state beyond doubt, and questions about others."""
+    if table.pivots:
+        return table.pivots, ()
+    at_headers = pivots_of_headers(table, context)
+    return (at_headers, ()) if at_headers else item_pivots(table, context)
 
 
 def _is_settled(mapping: LayoutMapping) -> bool:

@@ -260,21 +260,38 @@ def test_conditions_in_the_second_row_of_a_merged_header_come_in_by_a_pivot(tmp_
     assert list(table.columns.conditions.numeric["temperature_baseplate"]) == [-20, 70]
 
 
-def test_columns_named_by_items_are_asked_about_with_the_pivot_that_reads_them(tmp_path: Path) -> None:
+def test_columns_named_by_items(tmp_path: Path) -> None:
+    """Items that the project knows, or serial numbers, in the headers or alone under a quantity."""
     rows = [["f (GHz)", "LNA-1 gain (dB)", "LNA-2 gain (dB)"], [27.5, 20, 19]]
     path = book(tmp_path / "a.xlsx", rows)
-    assert 'header = "{item} gain (dB)"' in questions(one_table(path, stated={"block": "LNA"}))
-    mapping = '[[table]]\n[table.pivot]\nheader = "{item} gain (dB)"\nparameter = "gain"\nunit = "dB"\n'
-    table = taken(one_table(path, stated={"block": "LNA"}, mapping=mapping))
+    table = taken(one_table(path, stated={"block": "LNA"}))
     assert table.columns is not None
     assert [table.columns.items.word(row) for row in range(2)] == ["LNA-1", "LNA-2"]
+    mapping = '[[table]]\n[table.pivot]\nheader = "{item} gain (dB)"\nparameter = "gain"\nunit = "dB"\n'
+    mapped = taken(one_table(path, stated={"block": "LNA"}, mapping=mapping))
+    assert mapped.columns is not None and mapped.columns.items.labels == table.columns.items.labels
+    rows = [["f (GHz)", "SN 7", "SN 8"], [27.5, 20, 19]]
+    asked = questions(one_table(book(tmp_path / "b.xlsx", rows), stated={"block": "LNA"}))
+    assert "columns B to C are named by items (SN 7, SN 8); of which quantity" in asked
+    table = taken(one_table(book(tmp_path / "c.xlsx", [["Gain (dB)"], *rows]), stated={"block": "LNA"}))
+    assert table.columns is not None and table.columns.items.labels == ("SN 7", "SN 8")
 
 
 def test_a_table_on_its_side_keeps_its_true_cells(tmp_path: Path) -> None:
-    rows = [["DUT", "LNA-1"], [], ["f (GHz)", 27.5, 28, 30], ["Gain (dB)", 20, 19, "OL"], ["NF (dB)", 1, 2, 3]]
+    rows = [
+        ["DUT", "LNA-1"],
+        [],
+        ["f (GHz)", 27.5, 28, 30],
+        ["Gain (dB)", 20, 19, "OL"],
+        ["NF (dB)", 1, 2, 3],
+    ]
     table = taken(one_table(book(tmp_path / "a.xlsx", rows), stated={"block": "LNA"}))
     assert table.document is not None and table.columns is not None
-    assert low(table, "NF") == [1, 2, 3] and list(table.columns.conditions.numeric["frequency"]) == [27.5, 28, 30]
+    assert low(table, "NF") == [1, 2, 3] and list(table.columns.conditions.numeric["frequency"]) == [
+        27.5,
+        28,
+        30,
+    ]
     assert (table.place, table.document.turned) == ("A3:D5", True)
     assert table.columns.items.labels == ("LNA-1",)
     cells = [
