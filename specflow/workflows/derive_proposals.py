@@ -107,9 +107,7 @@ def _proposal(
             if preview.is_unchanged:
                 return None
             refused = len(preview.derived.refused)
-            why += f"; gives {preview.table.rows} values" + (
-                f", {refused} groups refused" * bool(refused)
-            )
+            why += f"; gives {preview.table.rows} values" + (f", {refused} groups refused" * bool(refused))
     if guessed:
         why += "; the requirement states no range, that of the data is shown: state the one that is meant"
     words = ["specflow", "derive", law.name, "--from", table.id, "--value", column.name]
