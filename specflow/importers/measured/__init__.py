@@ -1,15 +1,21 @@
 """Measurement tables: from the grid of a sheet to columns of evidence, in steps that each have one module.
 
-- where: ``tables`` (header row, units row, data rows), ``cells`` (their columns, read once), ``facts`` (key–value
-  rows above a table), ``layout`` (the key under which a layout is known again), ``located`` (a table with its mapping
-  and what is said above it)
+- where: ``finding`` (all tables of a sheet) by ``tables`` (header row, units row, data rows), ``beside`` (tables beside
+  each other), ``sideways`` (on their side), ``corner`` (numbers as headers), ``blocks`` (numbers without headers);
+  ``placed`` (where a mapping says, with ``area``); ``cells`` (their columns, read once), ``facts`` (key–value rows),
+  ``titles``, ``place_facts`` (conditions from a cell)
+- whose: ``located`` (a table with its mapping and what is said above it), ``layout`` (the key under which a layout is
+  known again), ``settled`` (which mapping holds); ``parts`` part a table until each part reads like a plain one:
+  ``long_form``, ``groups``, ``at_headers`` and ``item_headers`` (headers that state a condition, or name items),
+  ``axis``; ``repeats`` (the same records twice)
 - what: ``header_text`` (a header taken apart) with ``scale_text`` (its factor), ``roles``, ``quantity_text``,
   ``unit_source`` and ``cell_units`` (what its words, its cells and unit columns say), ``meaning`` (the order of
   decisions) with ``column``, ``value_column``, ``condition_column``, ``constants``, ``pairing`` and ``scaling``
-- said: ``stated`` (by the person, the mapping or the file, for all rows) with ``names``, ``day``, ``instrument`` (exports
-  of analysers) and ``formats``, ``mapping`` (TOML), ``proposal``, ``context`` (what the project knows)
-- read: ``selection`` (which rows), ``readings`` (numbers and intervals), ``placeholders``, ``linear_values``, ``words``,
-  ``conditions``, ``directions``, ``uncertainty``, ``values``, ``pivot`` (one quantity at several conditions),
+- said: ``stated`` (by the person, the mapping or the file, for all rows) with ``names``, ``day``, ``instrument``
+  (exports of analysers) and ``formats``, ``mapping`` (TOML) with ``mapping_parts``, ``proposal``, ``context`` (what the
+  project knows), ``items`` (words that name specimens)
+- read: ``selection`` (which rows), ``readings`` (numbers and intervals), ``placeholders``, ``linear_values``,
+  ``words``, ``conditions``, ``directions``, ``uncertainty``, ``values``, ``pivot`` (one quantity at several conditions),
   ``rejects``, ``subject`` (block and items)
 - made of it: ``row_kinds`` (lines and noise, bandwidths, row by row) with ``spectrum_words``, ``corrections`` with
   ``correction_doubts`` and ``correction_units``, ``peak_list`` with ``scan_text``

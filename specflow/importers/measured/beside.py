@@ -184,12 +184,12 @@ def _question(one: FoundTable, other: FoundTable) -> Question:
     first, last = one.headers[0].letter, other.headers[-1].letter
     rows = f"{one.header_row}", f"{_extent(other)[1]}"
     what = (
-        f"{one.place} and {other.place} may be two tables beside each other, or one whose rows go over the blank column; "
-        "both begin with a condition"
+        f"{one.place} and {other.place} may be two tables beside each other, or one whose rows go over the blank "
+        "column; both begin with a condition"
     )
     remedy = (
-        f'in a mapping: one [[table]] with area = "{one.place}" and one with area = "{other.place}", or one with area = '
-        f'"{first}{rows[0]}:{last}{rows[1]}"'
+        f'in a mapping: one [[table]] with area = "{one.place}" and one with area = "{other.place}", or one '
+        f'with area = "{first}{rows[0]}:{last}{rows[1]}"'
     )
     return Question("", one.headers[0].cell, what, remedy)
 

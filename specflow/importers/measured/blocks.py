@@ -224,7 +224,7 @@ def _axis_of(
 
 
 def _units_above(grid: Grid, block: int) -> list[tuple[str, str, str]]:
-    """Units in the section above that belong to no number, with the words of their row and their cells: "Trace 1,,dBm"."""
+    """Units in the section above that belong to no number ("Trace 1,,dBm"), with the words of their row, and cells."""
     found = []
     for row in range(_section_row(grid, grid.first_row, block), block):
         before: Value = ""

@@ -1,6 +1,6 @@
 """Headers that are numbers: one quantity in several columns, each at another value of a condition.
 
-The condition is named where the numbers carry a unit, in the corner ("Frequency (GHz) \\\\ Baseplate (°C)"), or in a row
+The condition is named where the numbers carry a unit, in the corner ("Frequency (GHz) \\ Baseplate (°C)"), or in a row
 above; the quantity in a row above or beside the corner. What is named nowhere is asked about.
 """
 

@@ -1,4 +1,4 @@
-"""All tables of a sheet, however they lie: beside each other, on their side, with numbers as headers, without headers."""
+"""All tables of a sheet, however they lie: beside each other, on their side, under numbers, without headers."""
 
 from __future__ import annotations
 

@@ -84,7 +84,8 @@ def _pivot(
 def _question(table: FoundTable, places: list[int]) -> Question:
     headers = [table.headers[place] for place in places]
     shown = ", ".join(header.text for header in headers[:4])
-    what = f"columns {headers[0].letter} to {headers[-1].letter} are named by items ({shown}); of which quantity, nothing says"
+    ends = f"{headers[0].letter} to {headers[-1].letter}"
+    what = f"columns {ends} are named by items ({shown}); of which quantity, nothing says"
     remedy = (
         f'in a mapping: [table.pivot] header = "{{item}}", columns = "{headers[0].letter}:{headers[-1].letter}", '
         "parameter, unit; or write the quantity with its unit over them"

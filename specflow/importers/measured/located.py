@@ -28,9 +28,9 @@ __all__ = ["GivenMappings", "LocatedTable", "LocatedTables", "Mappings", "locate
 class LocatedTable:
     """A table to be read; ``mapping_from`` says where its mapping is from ("" when there is none).
 
-    ``number`` counts the tables of the sheet: the parts of one share it. ``mapping`` is as the person wrote it, ``read_as`` what is read of this part of the table. ``sheet_facts`` are said
+    ``mapping`` is as the person wrote it, ``read_as`` what is read of this part of the table. ``sheet_facts`` are said
     above an earlier table of the sheet and hold where ``preamble`` says nothing else. ``kept_under`` is the key under
-    which the mapping is kept.
+    which the mapping is kept; ``number`` counts the tables of the sheet: the parts of one share it.
     """
 
     table: FoundTable

@@ -23,8 +23,8 @@ HEAD = f"""# A mapping of measurement tables: how the columns of each layout are
 #              spectrum = "noise-like" or "discrete"; scale = 20 where a reading times 20 is in the unit
 # condition:   dimension, unit; fill_down = true where a blank cell means the one above
 # uncertainty: unit, k = 2 (1: a standard uncertainty), of = "header of the values"
-# table:       block, method, stage; [table.stated] for conditions that hold for all rows, frequency = "28 GHz", or taken
-#              from the sheet: "cell B3", "cell B3 in GHz", "above"; header_rows = 2; others = "not read";
+# table:       block, method, stage; [table.stated] for conditions that hold for all rows, frequency = "28 GHz", or
+#              taken from the sheet: "cell B3", "cell B3 in GHz", "above"; header_rows = 2; others = "not read";
 #              include_hidden_rows, keep_summary_rows, keep_placeholders, skip = true; skip_rows = [12, 13]
 #              when = {{ Format = "Phase" }} where it holds only for tables that state this
 # place:       sheet, area = "K6:L10" (or "A137:B" to the end), header_rows = 0 where columns go by their letters,
@@ -88,7 +88,7 @@ def telling_facts(facts: Sequence[Sequence[Fact]]) -> list[dict[str, str]]:
 
 
 def _columns(one: Proposal, is_shared: bool) -> list[ColumnMapping]:
-    """The entries of all parts, each column once; without letters where several tables of this layout are in the file."""
+    """The entries of all parts, each column once; without letters where several tables of the file have this layout."""
     entries: dict[tuple[str, str], ColumnMapping] = {}
     for meanings in one.parts:
         for meaning in meanings:

@@ -27,7 +27,8 @@ class Rejected:
 class Rejects:
     """What one table has rejected, and blank cells by their reason.
 
-    ``turned``: rows and columns of the table have changed places. ``keep_placeholders`` says that -999 and the like are readings of this table.
+    ``turned``: rows and columns of the table have changed places. ``keep_placeholders`` says that -999 and the like are
+    readings of this table.
     """
 
     sheet: str
