@@ -38,7 +38,7 @@ def condition_of(heading: Heading, dimension: KnownDimension, unit: FoundUnit, r
             f"{dimension.title} in {unit.unit or 'no unit'}; expected is a unit like {dimension.unit or '1'}"
         )
     if problem:
-        return heading.ask_unit(problem, dimension.unit, "" if unit.unit or unit.problem else "axis_unit")
+        return heading.ask_unit(problem, dimension.unit, "axis_unit" if _takes_axis_unit(dimension, unit) else "")
     return replace(
         heading.means(Role.CONDITION, f"{reason}; unit from {unit.source}" if unit.source else reason),
         dimension=dimension.name,
@@ -47,6 +47,10 @@ def condition_of(heading: Heading, dimension: KnownDimension, unit: FoundUnit, r
         by_row=unit.by_row,
         by_cell=unit.by_cell,
     )
+
+
+def _takes_axis_unit(dimension: KnownDimension, unit: FoundUnit) -> bool:
+    return not unit.unit and not unit.problem and dimension.name not in _LEVELS
 
 
 def axis_unit(dimension: KnownDimension, unit: FoundUnit, stated: Stated) -> FoundUnit:

@@ -75,6 +75,12 @@ def is_plain_head(name: str) -> bool:
     return re.sub(r"[\s_\-]+", "", name.casefold()) in _PLAIN_HEADS
 
 
+def phase_header(name: str, unit: str) -> str:
+    """The header of the phase of a scattering parameter: "S21 phase (deg)" for "S21" in degrees; "" for any other."""
+    bare = re.sub(r"[()_,|\s]+", "", name)
+    return f"{bare} phase ({unit})" if unit in ("deg", "rad") and _SCATTERING.match(bare) else ""
+
+
 def is_formatted_data(name: str) -> bool:
     """Whether a header is that of a trace whose format stands above it, and of nothing else."""
     return re.sub(r"[\s_\-]+", "", name.casefold()) == "formatteddata"

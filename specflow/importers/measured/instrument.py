@@ -93,7 +93,7 @@ _NAMES = frozenset(
 _SERIAL_OF = re.compile(r"^(?:instrument|analy[sz]er|equipment)(?:serial|serialnumber|serialno|sn|s/n)$")
 _CORRECTED = re.compile(
     r"correct(?:ed|ion)|offset applied|path ?loss|cable loss|antenna factor|probe factor|transducer|de-?embed|"
-    r"ref(?:erence)?(?: level)? offset|external (?:gain|att\w*)|amplitude offset",
+    r"^(?:level |power |amplitude )?offset$|loss comp\w*|ref(?:erence)?(?: level)? offset|external (?:gain|att\w*)",
     re.IGNORECASE,
 )
 _NOT_DONE = frozenset(
@@ -152,6 +152,8 @@ def names_model(key: str) -> bool:
 def says_corrected(key: str, text: str) -> bool:
     """Whether a fact says that readings hold a correction already: "Path loss corrected: yes", "Ref Offset: 10 dB"."""
     value = text.strip().casefold()
+    if key.strip(" :").casefold() == "offset" and "db" not in value:
+        return False  # an offset in Hz is a condition
     if not _CORRECTED.search(key) or value in _NOT_DONE:
         return False
     number = re.fullmatch(r"([+\-]?[0-9.]+)\s*(?:db)?", value)

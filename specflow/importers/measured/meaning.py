@@ -26,7 +26,7 @@ from specflow.importers.measured.condition_column import (
 from specflow.importers.measured.constants import ConstantColumn, read_constants
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.directions import cosine_of
-from specflow.importers.measured.formats import Format, format_of, header_of, is_plain_head
+from specflow.importers.measured.formats import Format, format_of, header_of, is_plain_head, phase_header
 from specflow.importers.measured.header_cells import HeaderCell
 from specflow.importers.measured.header_text import header_key, known_unit, read_header
 from specflow.importers.measured.mapping import ColumnMapping, LayoutMapping
@@ -177,6 +177,10 @@ class _Reader:
             column = f"column {heading.letter}"
             remedy = f'--state "{column}=condition" or "{column}=value", or its role in a mapping'
             return heading.ask(f"may be the condition {dimension.title} or a value of {title}", remedy)
+        phase = phase_header(parts.name, unit.unit)
+        if phase:
+            named_phase = name_quantity(read_header(phase), "", self._context.dictionary, self._context.planes)
+            quantity = named_phase if named_phase.candidates else quantity
         if quantity.candidates:
             return self._of_format(named_value(heading, quantity, unit, self._context, self._stated))
         if is_temperature(parts, unit):

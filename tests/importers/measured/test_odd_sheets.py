@@ -172,6 +172,16 @@ TAKEN = {
         "deg",
         ["phase, in deg"],
     ),
+    "a magnitude and a phase of one parameter": Taken(
+        under(["S21(DB)", "S21(DEG)"], [20, 21, 22], [170, -175, -160]),
+        {"S21": [20, 21, 22], "S21 (C)": [170, -175, -160]},
+        words=["gain, in dB", "phase, in deg"],
+    ),
+    "the offset of a power meter": Taken(
+        under(["Output power (dBm)"], [20, 21, 22], above=[["Offset", "20 dB"]]),
+        {"Output power": [20, 21, 22]},
+        words=["corrected already, by what the file says: Offset 20 dB"],
+    ),
     "the attenuator of the analyser": Taken(
         under(
             ["EIRP (dBm)"], [40, 41, 42], above=[["RBW", "1 MHz"], ["Ref", "0 dBm"], ["Attenuation", "20 dB"]]
