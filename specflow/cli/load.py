@@ -43,6 +43,13 @@ BlockOption = Annotated[
 PrefixOption = Annotated[
     str, typer.Option(help="With --published: what goes before every id.", show_default=False)
 ]
+RemoveGoneOption = Annotated[
+    bool,
+    typer.Option(
+        "--remove-gone",
+        help="Propose to remove requirements that an earlier state of this workbook had and this one has not.",
+    ),
+]
 
 
 def load(
@@ -54,6 +61,7 @@ def load(
     published: PublishedOption = False,
     block: BlockOption = "",
     prefix: PrefixOption = "",
+    remove_gone: RemoveGoneOption = False,
     by: ByOption = "",
     as_json: JsonOption = False,
 ) -> None:
@@ -61,7 +69,8 @@ def load(
 
     Says back in words how each limit and each conditions set was read, shows what changes in meaning, lists what was
     rejected with its cell, and asks before anything is stored. Loading an edited workbook again changes only what
-    differs.
+    differs. A requirement whose row is gone is named and stays; with --remove-gone its removal is proposed, with what
+    hangs on it, and its id is never used again.
 
     With --published the file is a csv table of a standard's limits (id, standard, version, clause, parameter, bound,
     value, unit, conditions); each becomes a requirement, and of each row that does not it is said why.
@@ -72,8 +81,13 @@ def load(
         raise SpecflowError(
             "--block and --prefix belong to --published", hint="in a workbook each row says both"
         )
+    if remove_gone and published:
+        raise SpecflowError(
+            "--remove-gone does not go with --published",
+            hint="a table of a standard is no workbook of the project",
+        )
     with open_store(project, read_only=dry_run) as store:
-        preview = _preview(store, workbook, published=published, block=block, prefix=prefix)
+        preview = _preview(store, workbook, published, block, prefix, remove_gone)
         if not as_json:
             _show(preview)
         stored = not dry_run and _is_accepted(preview, yes=yes, take_rest=take_rest)
@@ -87,13 +101,15 @@ def load(
         say(f"stored; the project is at revision {revision}" if stored else "nothing was stored")
 
 
-def _preview(store: ProjectStore, path: Path, *, published: bool, block: str, prefix: str) -> LoadPreview:
+def _preview(
+    store: ProjectStore, path: Path, published: bool, block: str, prefix: str, remove_gone: bool
+) -> LoadPreview:
     from specflow.workflows.load_published import preview_published
     from specflow.workflows.load_workbook import preview_load
 
-    return (
-        preview_published(store, path, block=block, prefix=prefix) if published else preview_load(store, path)
-    )
+    if published:
+        return preview_published(store, path, block=block, prefix=prefix)
+    return preview_load(store, path, remove_gone=remove_gone)
 
 
 def _is_accepted(preview: LoadPreview, *, yes: bool, take_rest: bool) -> bool:

@@ -14,6 +14,7 @@ from specflow.model.finding import Finding, Severity
 from specflow.store import ProjectStore
 from specflow.workflows.evaluate_project import project_dictionary
 from specflow.workflows.refused_budgets import without_refused_budgets
+from specflow.workflows.remove_gone import with_gone_removed
 
 
 @dataclass(frozen=True)
@@ -33,10 +34,16 @@ class LoadPreview:
         return [finding for finding in self.findings if finding.severity is Severity.ERROR]
 
 
-def preview_load(store: ProjectStore, path: Path) -> LoadPreview:
-    """Read the workbook and compare it with the project; nothing is stored."""
+def preview_load(store: ProjectStore, path: Path, *, remove_gone: bool = False) -> LoadPreview:
+    """Read the workbook and compare it with the project; nothing is stored.
+
+    ``remove_gone``: propose the removal of requirements that an earlier state of the workbook gave and this one does
+    not, with what hangs on them.
+    """
     snapshot = store.load()
     draft = without_refused_budgets(read_workbook(path, snapshot, project_dictionary(snapshot)), snapshot)
+    if remove_gone:
+        draft = with_gone_removed(draft, snapshot)
     changes = diff(snapshot, draft.documents, removals=draft.removals)
     given = sum(change.action in ("add", "edit") for change in changes)
     return LoadPreview(

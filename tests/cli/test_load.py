@@ -53,6 +53,20 @@ def test_loading_the_same_again_changes_nothing(command: Command, workbook: Path
     assert "nothing changes; 3 unchanged; 0 rejected" in outcome.err
 
 
+def test_a_row_that_is_gone_is_removed_on_request(command: Command, workbook: Path, tmp_path: Path) -> None:
+    both = [*requirements(), *requirements(ID="R-2")]
+    command("load", project_workbook(workbook, blocks=BLOCKS, requirements=both), "--yes")
+    project_workbook(workbook, blocks=BLOCKS, requirements=requirements())
+    kept = command("load", workbook, "--yes")
+    assert "load --remove-gone" in kept.out and [name for name, _ in stored(tmp_path)] == ["R-1", "R-2"]
+    outcome = command("load", workbook, "--remove-gone", "--yes")
+    assert outcome.code == ExitCode.CLEAN
+    assert "is removed: with it activity R-2/A1; its id is never used again" in " ".join(outcome.out.split())
+    assert "removed: 1 activity, 1 requirement" in outcome.err
+    assert [name for name, _ in stored(tmp_path)] == ["R-1"]
+    assert command("load", workbook, "--remove-gone", "--published").code == ExitCode.BAD_INPUT
+
+
 def test_an_edited_limit_is_shown_in_meaning_before_it_is_stored(
     command: Command, workbook: Path, tmp_path: Path
 ) -> None:

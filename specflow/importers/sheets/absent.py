@@ -13,7 +13,9 @@ from specflow.model.origin import Origin
 
 _MOST_NAMED = 8
 _ELSE = "nothing is removed from a project by deleting its row"
-_REQUIREMENT = "where it no longer applies, fill in 'Not applicable: reason' and approver"
+_REQUIREMENT = (
+    "where it no longer applies, fill in 'Not applicable: reason' and approver; load --remove-gone removes it"
+)
 
 
 def note_absent(intake: Intake, file: str, sheets: Mapping[str, str]) -> None:

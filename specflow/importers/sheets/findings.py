@@ -24,7 +24,7 @@ WORKBOOK_FINDINGS: dict[str, str] = {
     "workbook-plans-differ": "The methods in a requirement's row and on the sheet Activities differ.",
     "workbook-reading": "What was done to read a sheet (decimal mark, delimiter).",
     "workbook-replaces-parameter": "A parameter of the project replaces one of the built-in dictionary.",
-    "workbook-row-gone": "Rows of an earlier state of the workbook are not in it any more; nothing is removed.",
+    "workbook-row-gone": "Rows of an earlier state of the workbook are not in it any more; nothing is removed unasked.",
     "workbook-sheet-by-headers": "A sheet of an unknown name was read by its headers.",
     "workbook-sign": "A limit has the sign that its parameter does not have here.",
     "workbook-uncertainty-without-k": "An expanded uncertainty has no coverage factor.",
