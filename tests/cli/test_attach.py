@@ -11,6 +11,7 @@ import pytest
 from specflow.cli import attach as attach_command
 from specflow.cli import attach_folder as folder_command
 from specflow.errors import ExitCode
+from specflow.model.correction import Correction, CorrectionPoint
 from specflow.store import create_project, open_project
 from tests.builders import a_project, adding
 from tests.cli.conftest import Command
@@ -215,3 +216,24 @@ def test_verify_says_what_changed_and_ends_with_1(command: Command, project: Pat
     assert done.code == ExitCode.BAD_INPUT and "exists already" in done.err
     assert command("export", "--file", "F-1", "--format", "csv").code == ExitCode.BAD_INPUT
     assert command("attach", "--verify", "none").code == ExitCode.BAD_INPUT
+
+
+def test_a_correction_is_added_and_can_be_traced(command: Command, project: Path, tmp_path: Path) -> None:
+    points = (CorrectionPoint(frequency_hz=27e9, added=3.0), CorrectionPoint(frequency_hz=30e9, added=3.6))
+    with open_project(project) as store:
+        store.apply(adding(Correction(id="CABLE-3", points=points, issue="B")), by="A. B.")
+    rows = [HEADER, ["LNA-1", 28, 20.0]]
+    said = ("--state", "correction=CABLE-3", "--yes", "--by", "A. B.")
+    done = command("attach", book(tmp_path / "gain.xlsx", rows), *said)
+    assert done.code == ExitCode.CLEAN and "CABLE-3 issue B: 3.2 dB added" in done.out
+    with open_project(project) as store:
+        snapshot = store.load()
+        (columns,) = snapshot.load_columns(["EV-1"]).values()
+        assert columns.values["Gain"].low.tolist() == [23.2]
+        assert columns.extra["Gain as read"].word(0) == "20.0"
+        assert snapshot.tables[0].applied[0].revision == 1
+    assert "CABLE-3 issue B: 3.2 dB added" in command("trace", "EV-1").out
+    beyond = book(tmp_path / "beyond.xlsx", [HEADER, ["LNA-1", 31, 20.0]])
+    done = command("attach", beyond, *said)
+    assert done.code == ExitCode.BAD_INPUT and "never extrapolated" in done.out
+    assert tables(project) == ["EV-1"]

@@ -188,6 +188,13 @@ def test_of_several_quantities_it_takes_the_one_it_is_for(tmp_path: Path) -> Non
     assert low(table, "EIRP") == pytest.approx([44.2]) and low(table, "Gain") == [20.0]
 
 
+def test_a_mapping_may_name_them(tmp_path: Path) -> None:
+    rows = [["f (GHz)", "EIRP (dBm)"], [28.0, 41.0]]
+    mapping = 'format = 1\n[[table]]\ncorrections = ["CABLE-3"]\n'
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows), a_correction(), mapping=mapping))
+    assert low(table, "EIRP") == pytest.approx([44.2])
+
+
 def test_two_corrections_add(tmp_path: Path) -> None:
     more = a_correction("PAD-1", points=(CorrectionPoint(frequency_hz=1e9, added=10.0, u=0.1),
                                          CorrectionPoint(frequency_hz=40e9, added=10.0, u=0.1)))  # fmt: skip
