@@ -224,12 +224,25 @@ class Cells:
         blank = (after == ord("/")) | ((after == ord(">")) & (first == ord("<")))
         # Some writers leave a blank before the slash.
         blank |= self.stands(self.value_at + len(b"<v"), b" />")
+        self._check_one_value(has_tag, inline, after)
         self.valued = (has_tag & ~blank) | inline
         self.cached = has_tag & (self.text | ~blank)
         shared = self.shared & self.valued & ~inline
         if (after[shared] != ord(">")).any():
             raise Irregular
         self._check_shared_texts(shared)
+
+    def _check_one_value(self, has_tag: Flags, inline: Flags, after: Bytes) -> None:
+        """Behind the value the cell ends: of two values in one cell, readers take the first or the last."""
+        open_tag = has_tag & (after == ord(">"))
+        end = self._tags[np.searchsorted(self._tags, self.value_at[open_tag]) + 1]
+        single = self.value_at[has_tag & ~open_tag]
+        closed = self.stands(single, b"<v/></c>") | self.stands(single, b"<v /></c>")
+        text = np.searchsorted(self._tags, self.value_at[inline]) + len((b"<is>", b"<t>", b"</t>"))
+        text_end = self._tags[np.minimum(text, len(self._tags) - 1)]
+        sound = self.stands(end, b"</v></c>").all() and self.stands(text_end, b"</is></c>").all()
+        if not (sound and closed.all()):
+            raise Irregular
 
     def _check_shared_texts(self, which: Flags) -> None:
         """The bulk reader takes whatever is no number for shared text 0."""

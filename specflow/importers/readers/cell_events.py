@@ -68,6 +68,8 @@ class SheetEvents:
         match name.rpartition(":")[2]:
             case "c":
                 self._start_cell(attributes)
+            case "v" if self._has_value or self._inline:
+                raise SheetProblem(f"a cell in row {self._row} holds two values")
             case "v":
                 self._text, self._has_value = [], True
             case "f":

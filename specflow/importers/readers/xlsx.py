@@ -114,7 +114,7 @@ class _Sheet:
 def _check_text_count(archive: Archive) -> None:
     """The bulk reader reserves memory for as many shared texts as the part says it holds, and takes the whole process
     down where there is not so much; each text takes at least its ``<si/>``."""
-    for said in _UNIQUE.findall(next(archive.stream(_TEXTS))):
+    for said in _UNIQUE.findall(next(archive.stream(_TEXTS), b"")):
         if not said.isdigit() or len(said) > 12 or int(said) > archive.size(_TEXTS):
             raise archive.hostile(f"{_TEXTS} says that it holds {said[:20].decode('latin-1')} texts")
 

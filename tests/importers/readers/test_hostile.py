@@ -115,6 +115,25 @@ def test_shared_texts_that_declare_a_small_size_are_refused(tmp_path: Path) -> N
     )
 
 
+@pytest.mark.parametrize(
+    "cell",
+    [
+        '<c r="A1"><v>28.25</v> r="I8" t="s"><v>0</v></c>',
+        '<c r="A1"><v>1</v><v>2</v></c>',
+        '<c r="A1"><v/><v>2</v></c>',
+        '<c r="A1" t="inlineStr"><is><t>1</t></is><v>2</v></c>',
+        '<c r="A1"><f>B1</f><v>1</v><v>2</v></c>',
+    ],
+)
+def test_a_cell_with_two_values_is_refused(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, cell: str
+) -> None:
+    path = by_hand(tmp_path / "a.xlsx", f'<row r="1">{cell}</row>')
+    assert "holds two values" in message_for(path)
+    monkeypatch.setattr(xlsx, "STREAMED_BYTES", 0)
+    assert "holds two values" in message_for(path)
+
+
 @pytest.mark.parametrize("count", ["10000000000", "1e9", "&#57;9999999999", "-1"])
 def test_shared_texts_that_say_they_are_more_than_fit_are_refused(tmp_path: Path, count: str) -> None:
     texts = f'<sst xmlns="{MAIN}" uniqueCount="{count}"><si><t>x</t></si></sst>'
