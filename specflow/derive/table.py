@@ -342,7 +342,7 @@ def _columns(
         values={request.gives.key: ValueArrays(low, low if np.array_equal(low, high) else high, u)},
         source_rows=base.source_rows[origin],
         items=base.items.take(origin),
-        dates=None if base.dates is None else _earliest(base.dates, rows, found),
+        dates=_dates(request, rows, found, origin),
         extra=extra,
     )
 
@@ -360,8 +360,16 @@ def _conditions(rows: Joined, apart: set[str], governing: Rows, outcomes: Sequen
     return Columns(len(governing), numeric, text, units)
 
 
-def _earliest(dates: TextColumn, rows: Joined, found: _Gathered) -> TextColumn:
-    """Return the earliest date among the rows of each group: what changed since then may touch the result."""
+def _dates(request: Request, rows: Joined, found: _Gathered, origin: Rows) -> TextColumn | None:
+    """Return the earliest date among the rows of each group: what changed since then may touch the result.
+
+    Without a date where the columns come from several tables: the table as a whole says it, if it can.
+    """
+    dates = request.roles[0].columns.dates
+    if dates is None or len({role.table.id for role in request.roles}) > 1:
+        return None
+    if request.law.over == "each":
+        return dates.take(origin)
     words: list[str | None] = []
     for taken, outcome in found.outcomes:
         known = [word for row in rows.base_rows[taken] if (word := dates.word(int(row)))]

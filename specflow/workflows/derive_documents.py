@@ -2,13 +2,15 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+from datetime import date
 from typing import Literal
 
 from specflow.derive import Derived, Request
 from specflow.exchange import digest
 from specflow.model.base import code_key
 from specflow.model.derivation import Derivation, InputColumn, SettingSaid
-from specflow.model.evidence import ConditionColumn, EvidenceTable, LeftOut, ValueColumn
+from specflow.model.evidence import ConditionColumn, EvidenceTable, HowRead, LeftOut, ValueColumn
 from specflow.model.parameter import QuantityIdentity
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Snapshot
@@ -41,6 +43,7 @@ def table_document(
 ) -> EvidenceTable:
     """Return the table of the result, with a provisional id and nobody who accepted it."""
     base = request.roles[0].table
+    tables = list({role.table.id: role.table for role in request.roles}.values())
     column = next(one for one in base.values if one.name == request.roles[0].column)
     how = derivation.words
     value = _value_column(column, derived, quantity, how)
@@ -67,6 +70,12 @@ def table_document(
                 for one in derived.refused
             ),
             "provisional": any(role.table.provisional for role in request.roles),
+            "performed_on": _day(tables),
+            "equipment": tuple(dict.fromkeys(one for table in tables for one in table.equipment)),
+            "corrections": tuple(dict.fromkeys(one for table in tables for one in table.corrections)),
+            "how_read": HowRead(),
+            "stated": (),
+            "peaks": None,
             "derivation": None,
             "covers": derived.covers,
             "revision": 1,
@@ -75,6 +84,12 @@ def table_document(
     arrays = [[one.role, one.name, one.unit, one.labels, one.sha256] for one in pack(table, derived.columns)]
     content = [arrays, told, list(derivation.digests), derivation.law_version]
     return table.model_copy(update={"digest": digest(content)})
+
+
+def _day(tables: Sequence[EvidenceTable]) -> date | None:
+    """Return the earliest day on which the inputs were taken; None where one of them does not say it."""
+    days = [table.performed_on for table in tables if table.performed_on is not None]
+    return min(days) if days and len(days) == len(tables) else None
 
 
 def _conditions(base: EvidenceTable, derived: Derived) -> tuple[ConditionColumn, ...]:

@@ -69,12 +69,34 @@ def request_of(
         hint = "say --from EV-3; specflow export --table evidence lists them"
         raise DocumentError("no table is named", hint=hint)
     roles = _roles(law, options, tables, arrays or snapshot.load_columns([table.id for table in tables]))
+    _check_alike(law, roles)
     settings = complete_settings(law, options.settings)
     quantity = options.quantity or _quantity(snapshot, dictionary, law, options, settings, roles[0])
     parameter = dictionary.get(quantity.parameter)
     if parameter is None:
         raise DocumentError(f"{quantity.parameter} is no known parameter", where=options.requirement)
     return Request(law, roles, settings, parameter, tuple(options.over), tuple(options.where)), quantity
+
+
+def _check_alike(law: Law, roles: Sequence[Role]) -> None:
+    """Refuse tables that may not be put together, and lists of peaks where what lies between readings matters."""
+    base = roles[0].table
+    for role in roles:
+        table = role.table
+        if table.peaks is not None and law.over != "each":
+            raise DocumentError(
+                f"{table.id} is a list of peaks; what lies between them was not listed",
+                where=f"law {law.name}",
+                hint="peaks are judged as they are; derive from a trace",
+            )
+        for part in ("block", "method", "stage"):
+            mine, other = getattr(base, part), getattr(table, part)
+            if code_key(str(mine)) != code_key(str(other)):
+                raise DocumentError(
+                    f"{base.id} and {table.id} differ in {part}: {mine} and {other}",
+                    where=f"law {law.name}",
+                    hint="derive from tables of one block, taken in one way",
+                )
 
 
 def _roles(

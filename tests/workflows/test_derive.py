@@ -14,8 +14,10 @@ from specflow.errors import DocumentError
 from specflow.limits import parse_limit
 from specflow.model.conditions import Span
 from specflow.model.derivation import Derivation
-from specflow.model.evidence import EvidenceTable, Supersession, Withdrawal
+from specflow.model.evidence import Equipment, EvidenceTable, Supersession, Withdrawal
 from specflow.model.finding import Finding
+from specflow.model.requirement import Method
+from specflow.model.source_statement import PeakList
 from specflow.model.verdict import RequirementStatus, Standing, Verdict
 from specflow.store import ProjectStore, create_project
 from specflow.workflows.attach import AttachOptions, Decision, accept_attach, preview_attach
@@ -461,3 +463,45 @@ def test_a_newer_version_of_a_law_is_a_reason_to_derive_again(
     third = store.load().find(Derivation, "DV-2")
     assert third is not None and third.law_version == 2
     assert not preview_again(store, DAY)
+
+
+def test_a_list_of_peaks_is_no_trace(store: ProjectStore) -> None:
+    table, columns = gain_trace("T-7")
+    peaks = table.model_copy(update={"peaks": PeakList()})
+    store.apply(adding(peaks), columns={"T-7": columns}, by="A. B.")
+    with pytest.raises(DocumentError, match="T-7 is a list of peaks"):
+        preview_derive(store, DeriveOptions("worst", ("T-7",), over=(OVER,)))
+
+
+def test_tables_taken_in_other_ways_are_not_put_together(store: ProjectStore) -> None:
+    table, columns = gain_trace("T-7")
+    simulated = table.model_copy(update={"method": Method.ANALYSIS})
+    store.apply(adding(simulated), columns={"T-7": columns}, by="A. B.")
+    with pytest.raises(DocumentError, match="T-1 and T-7 differ in method: test and analysis"):
+        preview_derive(
+            store,
+            DeriveOptions("difference", ("T-1", "T-7"), values=("T-1:Gain", "T-7:Gain"), gives="gain_step"),
+        )
+
+
+def test_a_result_of_two_tables_is_as_old_as_the_older(store: ProjectStore) -> None:
+    table, columns = gain_trace("T-7")
+    older = table.model_copy(
+        update={
+            "performed_on": date(2026, 3, 1),
+            "equipment": (Equipment(asset="PM-1", calibration_due=date(2027, 1, 1)),),
+        }
+    )
+    store.apply(adding(older), columns={"T-7": columns}, by="A. B.")
+    done = accept_derive(
+        store,
+        preview_derive(
+            store,
+            DeriveOptions("difference", ("T-1", "T-7"), values=("T-1:Gain", "T-7:Gain"), gives="gain_step"),
+        ),
+        by="A. B.",
+    )
+    found = store.load().find(EvidenceTable, done.table)
+    assert found is not None
+    assert (found.performed_on, [one.asset for one in found.equipment]) == (date(2026, 3, 1), ["PM-1"])
+    assert found.rows == 52
