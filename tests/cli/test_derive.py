@@ -3,13 +3,27 @@
 from __future__ import annotations
 
 import json
+import shlex
 from pathlib import Path
 
 import pytest
 
 from specflow.derive import LAWS
-from specflow.store import create_project
-from tests.builders import a_block, a_project, adding, an_evidence_file, an_item
+from specflow.model.conditions import Span
+from specflow.model.evidence import Supersession, Withdrawal
+from specflow.store import create_project, open_project
+from tests.builders import (
+    a_block,
+    a_conditions_set,
+    a_dimension,
+    a_project,
+    a_quantity,
+    a_requirement,
+    adding,
+    an_evidence_file,
+    an_item,
+    at_most,
+)
 from tests.cli.conftest import Command
 from tests.derive.deriving import a_trace
 
@@ -94,3 +108,41 @@ def test_nothing_to_derive_again_is_said(command: Command, project: Path) -> Non
 def test_nothing_to_propose_is_said(command: Command, project: Path) -> None:
     done = command("derive", "--proposed")
     assert (done.code, done.out) == (0, "")
+
+
+def test_what_was_replaced_is_derived_again(command: Command, project: Path) -> None:
+    command(*WORST, "--yes")
+    table, columns = a_trace("T-2", {"Gain": [20.0, 21.0, 22.0]})
+    step = Supersession(id="SUP-1", earlier="T-1", later="T-2", by="me", at="2026-05-20T00:00:00Z")
+    with open_project(project) as store:
+        store.apply(adding(table, step), columns={"T-2": columns}, by="me")
+    assert "its input T-1 was superseded by T-2" in command("check").out
+    looked = command("derive", "--again", "--dry-run")
+    assert (looked.code, "20 dB" in looked.out or "20.0000 dB" in looked.out) == (0, True)
+    done = command("derive", "--again", "--yes")
+    assert done.code == 0
+    assert "EV-1 is superseded by EV-2, derivation DV-2" in done.err
+    assert "nothing to derive again" in command("derive", "--again").err
+
+
+def test_what_cannot_be_derived_again_ends_with_findings(command: Command, project: Path) -> None:
+    command(*WORST, "--yes")
+    with open_project(project) as store:
+        gone = Withdrawal(id="W-1", table="T-1", reason="cable loose", by="me", at="2026-05-20T00:00:00Z")
+        store.apply(adding(gone), by="me")
+    done = command("derive", "--again", "--yes")
+    assert done.code == 1
+    assert "the input T-1 was withdrawn and nothing replaces it" in done.err
+
+
+def test_what_a_requirement_lacks_is_proposed(command: Command, project: Path) -> None:
+    with open_project(project) as store:
+        band = a_dimension(span=Span(low=17.7, high=20.2, step=1.5))
+        flat = a_requirement(quantity=a_quantity("gain_flatness"), limit=at_most(3))
+        store.apply(adding(a_conditions_set("CS", band), flat), by="me")
+    [row] = json.loads(command("derive", "--proposed", "--json").out)
+    assert row["requirement"] == "R-1"
+    words = shlex.split(row["say"])[1:]
+    done = command(*words, "--yes")
+    assert done.code == 0
+    assert "1 of 1" in command("status").out
