@@ -18,7 +18,8 @@ from specflow.units import compatible, format_unit, parse_unit
 NETWORK_KEYS = ("x axis", "column order", "format", "derive", "spacing")
 
 _REMEDIES = {
-    DoubtKind.X_AXIS: '--state "x axis=frequency" if it is one, else its condition: "x axis=input_level in dBm"',
+    DoubtKind.X_AXIS: '--state "x axis=frequency" (or "frequency in GHz") if it is one, else its condition: '
+    '"x axis=input_level in dBm"',
     DoubtKind.COLUMN_ORDER: '--state "column order=format" if the file keeps to the format, "column order=comment" if '
     "the comment is right",
     DoubtKind.PAIR_FORMAT: "--state format=DB, MA or RI, as the numbers are meant",
@@ -142,11 +143,7 @@ def _reordered(network: NetworkFile, named: tuple[tuple[int, int], ...]) -> Netw
 def _settle_axis(settled: SettledNetwork, text: str) -> None:
     name, _, unit = text.strip().partition(" in ")
     if name.strip().casefold() in ("frequency", "freq"):
-        if settled.network.axis_unit not in HERTZ:
-            what = f"the option line names {settled.network.axis_unit}, which is no unit of frequency"
-            remedy = "mend the option line (Hz, kHz, MHz or GHz)"
-            settled.questions.append(Question("x axis", "", what, remedy))
-        settled.notes.append("the x axis is frequency, as stated")
+        _settle_frequency(settled, unit)
         return
     known = find_dimension(name)
     if known is None or known.comparison is Comparison.TEXT:
@@ -166,4 +163,21 @@ def _settle_axis(settled: SettledNetwork, text: str) -> None:
     settled.notes.append(
         f"the first number of each row is {known.title} in {unit}, as stated; the option line says "
         f"{settled.network.axis_unit}"
+    )
+
+
+def _settle_frequency(settled: SettledNetwork, unit: str) -> None:
+    """The axis is frequency: in the unit of the option line, or in another that is stated."""
+    own = settled.network.axis_unit
+    stated = next((one for one in HERTZ if one.casefold() == (unit.strip() or own).casefold()), None)
+    if stated is None:
+        what = f"{unit.strip() or own} is no unit of frequency"
+        settled.questions.append(
+            Question("x axis", "", what, 'say "x axis=frequency in GHz" (Hz, kHz, MHz, GHz)')
+        )
+        return
+    settled.axis = Axis("frequency", stated, "stated by the person" if unit else settled.axis.by)
+    settled.network = replace(settled.network, axis_unit=stated)
+    settled.notes.append(
+        "the x axis is frequency, as stated" + (f", in {stated}, not in {own}" if stated != own else "")
     )

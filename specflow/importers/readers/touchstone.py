@@ -25,18 +25,15 @@ from specflow.importers.readers.touchstone_matrix import (
     scattering_of,
 )
 from specflow.importers.readers.touchstone_network import (
-    HERTZ,
     Complexes,
-    Doubt,
-    DoubtKind,
     Floats,
     NetworkFile,
     NoiseBlock,
-    PairFormat,
     Remark,
     values_per_frequency,
 )
 from specflow.importers.readers.touchstone_option import Option, read_option
+from specflow.importers.readers.touchstone_plausible import axis_doubts, number_remarks, pair_doubts
 from specflow.importers.readers.touchstone_rows import (
     NOISE_VALUES,
     Offsets,
@@ -265,34 +262,13 @@ def _with_comments(
         stated,
     )
     told = read_comments(network.comments, shape)
-    remarks = [*network.remarks, *told.remarks]
+    remarks = [*network.remarks, *told.remarks, *number_remarks(network)]
     if not stated:
         remarks.append(Remark(option.line, "the option line names no R: 50 ohm by the format"))
     return replace(
         network,
         port_names=told.port_names,
         impedances=told.impedances,
-        doubts=(*_other_unit(network, option), *told.doubts, *_negative_magnitudes(network)),
+        doubts=(*axis_doubts(network, option.line), *told.doubts, *pair_doubts(network)),
         remarks=tuple(sorted(remarks, key=lambda one: one.line)),
     )
-
-
-def _other_unit(network: NetworkFile, option: Option) -> list[Doubt]:
-    """An option line with the unit of a level or a voltage: the rows are over that, and not over frequency."""
-    if network.axis_unit in HERTZ:
-        return []
-    what = f"the option line names {network.axis_unit}, which is no unit of frequency"
-    return [Doubt(DoubtKind.X_AXIS, option.line, what)]
-
-
-def _negative_magnitudes(network: NetworkFile) -> list[Doubt]:
-    """Magnitudes below zero: the numbers are not what the option line says (they look like dB)."""
-    if network.pair_format is not PairFormat.MA or not (network.first < 0).any():
-        return []
-    k, i, j = (int(one) for one in np.argwhere(network.first < 0)[0])
-    line, token = network.place(k, i, j)
-    what = (
-        f"{network.entry_name(i, j)} has the magnitude {network.first[k, i, j]:.12g} (number {token} of the line), "
-        "which is below zero: the option line says MA"
-    )
-    return [Doubt(DoubtKind.PAIR_FORMAT, line, what)]

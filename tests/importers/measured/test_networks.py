@@ -237,6 +237,20 @@ def test_modes_are_the_names_of_ports(tmp_path: Path) -> None:
     assert planned(table) == [("gain", "gain", "S D3,4 D1,2")]
 
 
+def test_a_unit_that_is_hardly_right_is_asked_and_taken_as_told(tmp_path: Path) -> None:
+    path = tmp_path / "a.s2p"
+    path.write_text(
+        f"# GHz S MA R 50\n{ROWS}".replace("\n1 ", "\n1e9 ")
+        .replace("\n2 ", "\n2e9 ")
+        .replace("\n3 ", "\n3e9 ")
+    )
+    [question] = raw(path).questions
+    assert "3000000000 GHz; is the unit" in question.what
+    table = raw(path, **{"x axis": "frequency in Hz"})
+    assert table.columns is not None and table.columns.conditions.units["frequency"] == "Hz"
+    assert raw(path, **{"x axis": "frequency in s"}).questions
+
+
 def test_another_format_is_asked_and_taken_as_told(tmp_path: Path) -> None:
     path = tmp_path / "a.s1p"
     path.write_text("# GHz S MA R 50\n1 -20 0\n2 -10 0\n")

@@ -278,7 +278,7 @@ def test_a_falling_sweep_and_a_frequency_twice_are_said(tmp_path: Path) -> None:
 
 # --- what is refused, with its line
 
-TWO = "# HZ S RI R 50\n"
+TWO = "# GHz S RI R 50\n"
 FULL = "-0.3 0 0.6 0 0.6 0 -0.3 0"
 
 
@@ -511,6 +511,44 @@ HEADS = (
 @pytest.mark.parametrize("head", HEADS)
 def test_usual_comments_raise_no_doubt(tmp_path: Path, head: str) -> None:
     assert doubts(tmp_path, f"{head}{TWO}1 {FULL}\n2 {FULL}\n") == []
+
+
+@pytest.mark.parametrize(
+    ("text", "kind", "line"),
+    [
+        (f"# GHz S RI R 50\n1000000000 {FULL}\n2000000000 {FULL}\n", DoubtKind.X_AXIS, 1),
+        (f"# Hz S RI R 50\n1.5 {FULL}\n2.5 {FULL}\n", DoubtKind.X_AXIS, 1),
+        ("# GHz S RI R 50\n1 -20 10 -3 170 -3 170 -20 5\n2 -20 90 -3 90 -3 90 -20 50\n3 -20 9 -3 90 -3 90 -20 50\n",
+         DoubtKind.PAIR_FORMAT, 3),
+        ("# GHz S RI R 50\n1 .1 10 .7 170 .7 170 .1 5\n2 .1 90 .7 90 .7 90 .1 50\n3 .1 9 .7 90 .7 90 .1 50\n",
+         DoubtKind.PAIR_FORMAT, 2),
+        ("# GHz S DB R 50\n1 .1 10 .7 170 .7 170 .1 5\n2 .1 90 .7 90 .7 90 .1 50\n3 .1 9 .7 90 .7 90 .1 50\n",
+         DoubtKind.PAIR_FORMAT, 2),
+        ("# GHz S MA R 50\n1 20 10 .3 17 40 10 20 5\n2 20 9 .3 9 40 90 20 5\n3 20 9 .3 90 40 90 20 50\n",
+         DoubtKind.PAIR_FORMAT, 2),
+    ],
+)  # fmt: skip
+def test_numbers_that_are_hardly_what_the_option_line_says(
+    tmp_path: Path, text: str, kind: DoubtKind, line: int
+) -> None:
+    [(found, where)] = doubts(tmp_path, text)
+    assert found is kind and where in (line, 2)
+
+
+def test_comments_that_count_other_points_or_name_other_ends_are_said(tmp_path: Path) -> None:
+    head = "! Points: 3\n! Start frequency: 0.000000001 GHz\n! Stop frequency:  3 GHz\n"
+    network = read_text(tmp_path, f"{head}# GHz S RI R 50\n1 {FULL}\n2 {FULL}\n", "a.s2p")
+    assert [(one.line, one.what) for one in network.remarks if one.warns] == [
+        (1, "the comment counts 3 points, the file has 2"),
+        (2, "the comment says start 0.000000001 GHz, the file has 1000000000 Hz"),
+        (3, "the comment says stop 3 GHz, the file has 2000000000 Hz"),
+    ]
+
+
+def test_angles_that_look_like_radians_are_said(tmp_path: Path) -> None:
+    rows = "".join(f"{k} 0.5 {-3.1 + 0.2 * k:.3f}\n" for k in range(1, 32))
+    [said] = [one for one in read_text(tmp_path, f"# GHz S MA R 50\n{rows}", "a.s1p").remarks if one.warns]
+    assert "radians" in said.what
 
 
 @pytest.mark.parametrize(

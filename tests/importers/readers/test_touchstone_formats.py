@@ -89,11 +89,8 @@ def test_version_2_of_all_layouts(
     assert (ours.version, list(ours.reference_ohm)) == (version, ohms)
     theirs = skrf.Network(str(tmp_path / "a.ts"))
     np.testing.assert_allclose(theirs.z0.real[0], ohms)
-    if (ports, order, matrix_format in ("Lower", "Upper")) == (2, "21_12", True):
-        assert (
-            theirs.s[:, 0, 1].real == 0
-        ).all()  # scikit-rf 2.2.0 loses a real part here; ours is checked above
-    else:
+    if (ports, order, matrix_format in ("Lower", "Upper")) != (2, "21_12", True):
+        # scikit-rf 2.2.0 leaves a real part unset in the triangular two-port of that order; ours is checked above
         np.testing.assert_allclose(ours.s, theirs.s, rtol=1e-12)
 
 
