@@ -15,8 +15,8 @@
   (exports of analysers) and ``formats``, ``mapping`` (TOML) with ``mapping_parts``, ``proposal``, ``context`` (what the
   project knows), ``items`` (words that name specimens)
 - read: ``selection`` (which rows), ``readings`` (numbers and intervals), ``placeholders``, ``linear_values``,
-  ``words``, ``conditions``, ``directions``, ``uncertainty``, ``values``, ``pivot`` (one quantity at several conditions),
-  ``rejects``, ``subject`` (block and items)
+  ``words``, ``conditions``, ``directions``, ``uncertainty``, ``values``, ``pivot`` (one quantity at several
+  conditions), ``rejects``, ``subject`` (block and items)
 - made of it: ``row_kinds`` (lines and noise, bandwidths, row by row) with ``spectrum_words``, ``corrections`` with
   ``correction_doubts`` and ``correction_units``, ``peak_list`` with ``scan_text``
 - doubted: ``slips`` and ``slip_findings`` (slipped decimals), ``zero_hertz``; kept beside: ``source_says`` (limits and

@@ -150,11 +150,11 @@ class MatrixMapping:
 class LayoutMapping:
     """The mapping of one layout.
 
-    ``area`` ("K6:L10", or "A137:B" to the end of the sheet) says where the table stands, ``alone`` that nothing else of
-    its sheet is read; its first ``header_rows`` rows are headers (0: none, columns go by their letters). With ``turned``
-    the headers stand in the first column. ``others = "not read"``: columns that no entry names are not read.
-    ``skip_rows`` are rows that are not read, ``stop_at`` the words at which the table has ended. ``when`` are facts that
-    must be stated above the table for this mapping to hold.
+    ``area`` ("K6:L10", or "A137:B" to the end of the sheet) says where the table stands, ``alone`` that nothing else
+    of its sheet is read; its first ``header_rows`` rows are headers (0: none, columns go by their letters). With
+    ``turned`` the headers stand in the first column. ``others = "not read"``: columns that no entry names are not
+    read. ``skip_rows`` are rows that are not read, ``stop_at`` the words at which the table has ended. ``when`` are
+    facts that must be stated above the table for this mapping to hold.
     """
 
     layout: str = ""

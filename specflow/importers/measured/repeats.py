@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from collections import defaultdict
-from collections.abc import Mapping, Sequence
+import hashlib
+from collections.abc import Sequence
 from dataclasses import replace
 
 import numpy as np
@@ -13,64 +13,81 @@ from specflow.importers.measured.document import content_digest
 from specflow.importers.measured.result import MeasuredTable
 from specflow.model.evidence import EvidenceColumns, EvidenceTable, ValueArrays
 
-_MOST_ROWS = 200_000
-
 Record = tuple[object, ...]
+Marks = NDArray[np.uint64]
 
 
 def without_repeats(tables: Sequence[MeasuredTable]) -> list[MeasuredTable]:
-    """Leave out rows all of whose records (quantity, item, conditions, value) stand in an earlier table of the file."""
-    if sum(table.columns is not None for table in tables) < 2:
-        return list(tables)  # sorting the millions of values of a lone table would find nothing
+    """Leave out values that stand in an earlier table of the file with the same quantity, item and conditions."""
     seen: dict[Record, str] = {}
     result = []
-    doubles = _shared_values(tables)
-    for table in tables:
-        rows = _candidates(table, doubles)
+    for table, rows in zip(tables, _candidates(tables), strict=True):
         if table.document is None or table.columns is None or not len(rows):
             result.append(table)
             continue
         records = _records(table.document, table.columns, rows)
         where = table.place if not table.sheet else f"{table.sheet}!{table.place}"
         again = [(name, place, seen[one]) for name, place, one in records if one in seen]
-        if again:
-            table = _reduced(table, again)
-        result.append(table)
+        result.append(_reduced(table, again) if again else table)
         for _, _, record in records:
             seen.setdefault(record, where)
     return result
 
 
-def _shared_values(tables: Sequence[MeasuredTable]) -> dict[tuple[str, str], NDArray[np.float64]]:
-    """The values that more than one table has, of each parameter and unit: only these can be said twice."""
-    found: dict[tuple[str, str], list[NDArray[np.float64]]] = defaultdict(list)
-    for table in tables:
-        own: dict[tuple[str, str], list[NDArray[np.float64]]] = defaultdict(list)
-        for value in (
-            table.document.values if table.document is not None and table.columns is not None else ()
-        ):
-            assert table.columns is not None  # a table with a document has its arrays
-            own[value.quantity.parameter, value.unit].append(table.columns.values[value.name].low)
-        for key, arrays in own.items():
-            found[key].append(np.unique(np.concatenate(arrays)))
-    shared = {}
-    for key, arrays in found.items():
-        values, counts = np.unique(np.concatenate(arrays), return_counts=True)
-        shared[key] = values[counts > 1] if len(arrays) > 1 else values[:0]
-    return shared
+def _candidates(tables: Sequence[MeasuredTable]) -> list[NDArray[np.intp]]:
+    """The rows of each table that another table seems to say, too: found by marks, so that few are compared in full."""
+    if sum(table.document is not None for table in tables) < 2:
+        return [np.zeros(0, np.intp) for _ in tables]
+    marks = [_marks(table) for table in tables]
+    each = [np.unique(own) for own in marks]
+    found, counts = np.unique(np.concatenate([*each, np.zeros(0, np.uint64)]), return_counts=True)
+    shared = found[counts > 1]
+    if not len(shared):
+        return [np.zeros(0, np.intp) for _ in tables]
+    return [
+        np.flatnonzero(np.isin(own, shared).any(axis=1)) if own.size else np.zeros(0, np.intp)
+        for own in marks
+    ]
 
 
-def _candidates(
-    table: MeasuredTable, doubles: Mapping[tuple[str, str], NDArray[np.float64]]
-) -> NDArray[np.intp]:
-    """The rows that may be said in another table, too."""
-    if table.document is None or table.columns is None:
-        return np.zeros(0, np.intp)
-    may = np.zeros(table.columns.conditions.size, bool)
+def _marks(table: MeasuredTable) -> Marks:
+    """One number for each record (row, value column) that depends on all that the record says."""
+    if table.document is None or table.columns is None or not table.document.values:
+        return np.zeros((0, 0), np.uint64)
+    columns = table.columns
+    row = np.zeros(columns.conditions.size, np.uint64)
+    for name, numbers in sorted(columns.conditions.numeric.items()):
+        unit = columns.conditions.units.get(name, "")
+        row += np.where(np.isnan(numbers), np.uint64(0), _mixed(_bits(numbers), f"{name} {unit}"))
+    for name, words in sorted({**columns.conditions.text, "": columns.items}.items()):
+        of_label = np.array([_of_text(label.casefold()) for label in words.labels] + [0], np.uint64)
+        row += np.where(words.codes < 0, np.uint64(0), _mixed(of_label[words.codes], name))
+    marks = []
     for value in table.document.values:
-        low = table.columns.values[value.name].low
-        may |= np.isin(low, doubles[value.quantity.parameter, value.unit])
-    return np.flatnonzero(may)[:_MOST_ROWS]
+        arrays = columns.values[value.name]
+        own = (
+            row
+            + _mixed(_bits(arrays.low), value.quantity.model_dump_json() + value.unit)
+            + _mixed(_bits(arrays.high), "high")
+        )
+        lonely = _of_text(f"{table.place} {table.sheet}") + np.arange(len(own), dtype=np.uint64)
+        marks.append(np.where(np.isnan(arrays.low), lonely, own))
+    return np.column_stack(marks)
+
+
+def _bits(numbers: NDArray[np.float64]) -> Marks:
+    return (numbers + 0.0).view(np.uint64)  # -0 is 0
+
+
+def _mixed(bits: Marks, name: str) -> Marks:
+    """Numbers spread over all 64 bits, another way for each name."""
+    mixed = (bits ^ _of_text(name)) * np.uint64(0x9E3779B97F4A7C15)
+    mixed ^= mixed >> np.uint64(29)
+    return np.asarray(mixed * np.uint64(0xBF58476D1CE4E5B9))
+
+
+def _of_text(text: str) -> np.uint64:
+    return np.uint64(int(hashlib.sha256(text.encode()).hexdigest()[:16], 16))
 
 
 def _records(
@@ -122,7 +139,8 @@ def _reduced(table: MeasuredTable, again: Sequence[tuple[str, int, str]]) -> Mea
     emptied[[row for _, row, _ in again]] = True
     emptied &= np.all([np.isnan(one.low) for one in values.values()], axis=0)
     left = np.flatnonzero(~emptied)
-    note = f"{len(again)} values say what {again[0][2]} says (quantity, item, conditions, value): they were not taken twice"
+    what = f"{len(again)} values say what {again[0][2]} says (quantity, item, conditions, value)"
+    note = f"{what}: they were not taken twice"
     if not len(left):
         return replace(table, document=None, columns=None, values=0, notes=(*table.notes, note))
     taken = _taken(replace(columns, values=values), left)
