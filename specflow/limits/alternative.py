@@ -10,7 +10,7 @@ import numpy as np
 
 from specflow.limits.inputs import Flags
 from specflow.limits.tree import tree_units, undefined_in
-from specflow.model.limit import Alternatives, Gate, Limit, LimitNode, LimitState, OfQuantity, Rule
+from specflow.model.limit import Alternatives, Gate, Limit, LimitNode, LimitState, OfQuantity, Stringency
 
 
 @dataclass(frozen=True, slots=True)
@@ -56,7 +56,7 @@ def _member(limit: Limit, node: LimitNode, quantity: str) -> Alternative:
     return Alternative(quantity, alone)
 
 
-def rule_of(limit: Limit) -> Rule | None:
+def rule_of(limit: Limit) -> Stringency | None:
     """Return which member governs, None for a limit without alternatives."""
     tree = limit.tree.limit if isinstance(limit.tree, Gate) else limit.tree
     return tree.rule if isinstance(tree, Alternatives) else None
@@ -64,6 +64,6 @@ def rule_of(limit: Limit) -> Rule | None:
 
 def choose(limit: Limit, passed: Sequence[Flags]) -> Flags:
     """Return where the limit as a whole is met, from where each member is: the looser needs one, the stricter all."""
-    if rule_of(limit) is Rule.LOOSER:
+    if rule_of(limit) is Stringency.LOOSER:
         return np.asarray(reduce(np.logical_or, passed))
     return np.asarray(reduce(np.logical_and, passed))

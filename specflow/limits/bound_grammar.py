@@ -30,8 +30,8 @@ from specflow.model.limit import (
     Bound,
     LimitNode,
     OfQuantity,
-    Rule,
     Side,
+    Stringency,
     Undefined,
 )
 from specflow.model.parameter import Better
@@ -246,7 +246,7 @@ def _chained(draft: Draft, low: Expression, written: str, place: int) -> LimitNo
         Bound(side=left_side, value=plain(low, unit), unit=unit, strict=COMPARED[sign][1]),
         Bound(side=right_side, value=plain(high, unit), unit=unit, strict=right_strict),
     )
-    both = Alternatives(rule=Rule.STRICTER, members=members)
+    both = Alternatives(rule=Stringency.STRICTER, members=members)
     return both if name.casefold() in draft.own_names else OfQuantity(quantity=name, limit=both)
 
 

@@ -12,13 +12,13 @@ from specflow.limits.bounds import NO_FLAG, Bounds
 from specflow.limits.conversion import Floats, conversion, convert_to, same_unit_spelling, unit_of
 from specflow.limits.inputs import Flags
 from specflow.limits.tree import walk_limit
-from specflow.model.limit import LimitNode, OfQuantity, Rule
+from specflow.model.limit import LimitNode, OfQuantity, Stringency
 from specflow.units import Kind
 
 _NO_LOWER, _NO_UPPER = np.array([-np.inf]), np.array([np.inf])
 
 
-def alternatives_of(rule: Rule, bounds: Sequence[Bounds], members: Sequence[LimitNode]) -> Bounds:
+def alternatives_of(rule: Stringency, bounds: Sequence[Bounds], members: Sequence[LimitNode]) -> Bounds:
     """Return the common bounds of alternatives in one unit.
 
     Raises ExpressionError when the members bound different quantities or have units that do not compare: then each
@@ -52,7 +52,7 @@ def in_unit(bounds: Bounds, unit: str) -> Bounds:
     return replace(bounds, lower=lower, upper=upper, unit=unit)
 
 
-def combined(rule: Rule, bounds: Sequence[Bounds], unit: str) -> Bounds:
+def combined(rule: Stringency, bounds: Sequence[Bounds], unit: str) -> Bounds:
     """Combine bounds of one unit row by row; a member that does not apply to a row leaves it to the others."""
     lower, lower_strict = _side(rule, bounds, True)
     upper, upper_strict = _side(rule, bounds, False)
@@ -76,7 +76,7 @@ def combined(rule: Rule, bounds: Sequence[Bounds], unit: str) -> Bounds:
     )
 
 
-def _side(rule: Rule, bounds: Sequence[Bounds], is_lower: bool) -> tuple[Floats | None, Flags]:
+def _side(rule: Stringency, bounds: Sequence[Bounds], is_lower: bool) -> tuple[Floats | None, Flags]:
     """Combine one side. The stricter rule keeps every bound; the looser keeps a side only if all members bound it."""
     nothing = _NO_LOWER if is_lower else _NO_UPPER
     given = [part.lower if is_lower else part.upper for part in bounds]
@@ -84,17 +84,17 @@ def _side(rule: Rule, bounds: Sequence[Bounds], is_lower: bool) -> tuple[Floats 
         return None, NO_FLAG
     # Larger is stricter for lower bounds, smaller for upper ones; work with "strictness" so that one rule serves.
     sign = 1.0 if is_lower else -1.0
-    best: Floats = np.full(1, -np.inf if rule is Rule.STRICTER else np.inf)
+    best: Floats = np.full(1, -np.inf if rule is Stringency.STRICTER else np.inf)
     strict: Flags = NO_FLAG
     for part, values in zip(bounds, given, strict=True):
         own = sign * (nothing if values is None else values)
-        own = np.where(part.applies, own, -np.inf if rule is Rule.STRICTER else np.inf)
+        own = np.where(part.applies, own, -np.inf if rule is Stringency.STRICTER else np.inf)
         own_strict = (part.lower_strict if is_lower else part.upper_strict) & part.applies
-        closer = own > best if rule is Rule.STRICTER else own < best
-        tie = (own == best) & (strict | own_strict if rule is Rule.STRICTER else strict & own_strict)
+        closer = own > best if rule is Stringency.STRICTER else own < best
+        tie = (own == best) & (strict | own_strict if rule is Stringency.STRICTER else strict & own_strict)
         strict = np.where(own == best, tie, np.where(closer, own_strict, strict))
-        best = np.maximum(best, own) if rule is Rule.STRICTER else np.minimum(best, own)
-    none_applies = np.isposinf(best) if rule is Rule.LOOSER else np.isneginf(best)
+        best = np.maximum(best, own) if rule is Stringency.STRICTER else np.minimum(best, own)
+    none_applies = np.isposinf(best) if rule is Stringency.LOOSER else np.isneginf(best)
     return np.where(none_applies, nothing, sign * best), strict
 
 

@@ -57,7 +57,7 @@ def evaluate_limit(limit: Limit, context: LimitContext, *, with_test_tolerance: 
     if bounds is None:
         bounds = _evaluated(limit.tree, context)
     if limit.rounding is not None:
-        bounds = rounded(bounds, limit.rounding)
+        bounds = round_bounds(bounds, limit.rounding)
     if with_test_tolerance and limit.test_tolerance is not None:
         bounds = _relaxed(bounds, limit.test_tolerance)
     return bounds
@@ -244,7 +244,7 @@ def _gated(bounds: Bounds, open_: Flags, known: Flags) -> Bounds:
     )
 
 
-def rounded(bounds: Bounds, rounding: Rounding) -> Bounds:
+def round_bounds(bounds: Bounds, rounding: Rounding) -> Bounds:
     """Round the numbers of the bounds to multiples of the step; ties to even as in ASTM E29."""
     step = rounding.step.value
     turn = {"nearest": np.rint, "up": np.ceil, "down": np.floor}[rounding.method]

@@ -50,7 +50,7 @@ from specflow.model.limit import (
     NoLimit,
     OfQuantity,
     Population,
-    Rule,
+    Stringency,
     Undefined,
 )
 from specflow.model.parameter import Better, Parameter
@@ -267,7 +267,7 @@ def _read_shape(draft: Draft, word: str) -> LimitNode:
                 return read_mask(draft)
             case "sum":
                 return read_power_sum(draft, read_limit)
-        return read_members(draft, read_limit, Rule.LOOSER if word == "looser" else Rule.STRICTER)
+        return read_members(draft, read_limit, Stringency.LOOSER if word == "looser" else Stringency.STRICTER)
 
 
 _POSTFIXES = ("if", "only if", "when", "in", "measured in", "allow", "at", "worst", "mean", "with")

@@ -7,7 +7,7 @@ from collections.abc import Sequence
 
 from specflow.limits.draft import Bare, Draft, Typical
 from specflow.limits.tree import side_of
-from specflow.model.limit import Cases, LimitNode, Rule, Side
+from specflow.model.limit import Cases, LimitNode, Side, Stringency
 
 _LOOSER = ("looser", "less stringent", "less strict", "more relaxed")
 _STRICTER = ("stricter", "more stringent", "tighter")
@@ -60,18 +60,18 @@ def without_typical(draft: Draft, clauses: Sequence[LimitNode | Bare | Typical])
     return kept
 
 
-def read_rule(draft: Draft, joint: str, members: tuple[LimitNode, ...]) -> Rule:
+def read_rule(draft: Draft, joint: str, members: tuple[LimitNode, ...]) -> Stringency:
     reader = draft.reader
     place = reader.place
     comma = reader.take(",")
     if reader.take_words("whichever is the", "whichever is", "whichever") is None:
         if comma is not None:
             reader.fail("expected 'whichever is looser' or 'whichever is stricter' after the comma")
-        return Rule.LOOSER if joint == "or" else Rule.STRICTER
+        return Stringency.LOOSER if joint == "or" else Stringency.STRICTER
     if reader.take_words(*_LOOSER) is not None:
-        return Rule.LOOSER
+        return Stringency.LOOSER
     if reader.take_words(*_STRICTER) is not None:
-        return Rule.STRICTER
+        return Stringency.STRICTER
     word = reader.take_words(*_LOWER, *_HIGHER)
     sides = {side_of(member) for member in members}
     if word is None or len(sides) != 1 or None in sides:
@@ -79,7 +79,7 @@ def read_rule(draft: Draft, joint: str, members: tuple[LimitNode, ...]) -> Rule:
             "which of the alternatives governs?", hint="whichever is looser, or stricter", place=place
         )
     looser = (word in _HIGHER) == (sides == {Side.UPPER})
-    return Rule.LOOSER if looser else Rule.STRICTER
+    return Stringency.LOOSER if looser else Stringency.STRICTER
 
 
 _TYPICAL_REMARK = re.compile(r"\([^()]{0,40}\b(?:typ|typical|nom|nominal)\b[^()]{0,40}\)", re.IGNORECASE)

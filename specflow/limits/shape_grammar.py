@@ -31,10 +31,10 @@ from specflow.model.limit import (
     LimitNode,
     Mask,
     PowerSum,
-    Rule,
     Segment,
     Side,
     Slope,
+    Stringency,
 )
 
 ReadLimit = Callable[[Draft], LimitNode]
@@ -104,7 +104,7 @@ def read_by(draft: Draft, read_limit: ReadLimit) -> LimitNode:
     return Cases(cases=tuple(cases), otherwise=otherwise)
 
 
-def read_members(draft: Draft, read_limit: ReadLimit, rule: Rule) -> LimitNode:
+def read_members(draft: Draft, read_limit: ReadLimit, rule: Stringency) -> LimitNode:
     """Read the inside of ``looser(...)`` or ``stricter(...)``."""
     members = _members(draft, read_limit)
     draft.reader.expect(")", "the alternatives")

@@ -24,11 +24,11 @@ from specflow.model.limit import (
     Percentile,
     Population,
     PowerSum,
-    Rule,
     Segment,
     Side,
     Slope,
     Statistic,
+    Stringency,
     Tolerance,
     ToleranceBound,
     Undefined,
@@ -88,7 +88,7 @@ def node_text(node: LimitNode) -> str:
         case Mask():
             return _mask_text(node)
         case Alternatives(rule=rule, members=members):
-            name = "looser" if rule is Rule.LOOSER else "stricter"
+            name = "looser" if rule is Stringency.LOOSER else "stricter"
             return f"{name}({'; '.join(node_text(member) for member in members)})"
         case PowerSum(members=members, bandwidth=bandwidth):
             parts = [node_text(member) for member in members]

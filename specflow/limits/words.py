@@ -24,11 +24,11 @@ from specflow.model.limit import (
     Percentile,
     Population,
     PowerSum,
-    Rule,
     Segment,
     Side,
     Slope,
     Statistic,
+    Stringency,
     Tolerance,
     ToleranceBound,
     Undefined,
@@ -128,8 +128,8 @@ def _tolerance_words(node: Tolerance) -> str:
     return f"{nominal}, up to {plus} above and up to {minus} below"
 
 
-def _alternatives_words(rule: Rule, members: tuple[LimitNode, ...]) -> str:
-    if rule is Rule.LOOSER:
+def _alternatives_words(rule: Stringency, members: tuple[LimitNode, ...]) -> str:
+    if rule is Stringency.LOOSER:
         return f"{' or '.join(_part(member) for member in members)}, whichever is less stringent"
     return " and ".join(_part(member) for member in members)
 

@@ -129,7 +129,7 @@ class Mask(Document):
     allowances: tuple[Allowance, ...] = ()
 
 
-class Rule(StrEnum):
+class Stringency(StrEnum):
     """Which of the alternatives governs."""
 
     LOOSER = "looser"
@@ -140,7 +140,7 @@ class Alternatives(Document):
     """The less (or more) stringent of several limits, each with its own unit and quantity."""
 
     kind: Literal["alternatives"] = "alternatives"
-    rule: Rule
+    rule: Stringency
     members: tuple[LimitNode, ...] = Field(min_length=2)
 
 

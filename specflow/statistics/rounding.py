@@ -25,7 +25,7 @@ def round_to(number: str, step: Decimal) -> Decimal:
     return (Decimal(number) / step).quantize(Decimal(1), ROUND_HALF_EVEN) * step
 
 
-def rounded(values: NDArray[np.float64], step: Decimal) -> NDArray[np.float64]:
+def round_values(values: NDArray[np.float64], step: Decimal) -> NDArray[np.float64]:
     """Return float64 values rounded in decimal to a multiple of ``step``; NaN and infinities stay.
 
     One decimal operation a distinct value: this is the slow road, taken only where a requirement asks for it.

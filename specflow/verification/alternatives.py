@@ -17,7 +17,7 @@ from numpy.typing import NDArray
 from specflow.limits import alternatives, rule_of
 from specflow.limits.conversion import same_unit_spelling
 from specflow.model.evidence import EvidenceTable
-from specflow.model.limit import Limit, Rule
+from specflow.model.limit import Limit, Stringency
 from specflow.model.requirement import Requirement
 from specflow.model.verdict import Verdict
 from specflow.parameters import Dictionary
@@ -79,7 +79,7 @@ def put_together(
     At each point stands the record of the member that decides there. ``units`` are those of the members' margins: a
     margin in another unit than that of the member returned is left out.
     """
-    looser = rule_of(limit) is Rule.LOOSER
+    looser = rule_of(limit) is Stringency.LOOSER
     found = [_combined(own, looser) for own in _by_item(members, n)]
     shown = np.concatenate([decider for _, decider in found]) if found else np.zeros(0, np.intp)
     most = int(np.bincount(shown, minlength=len(members)).argmax()) if len(shown) else 0

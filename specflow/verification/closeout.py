@@ -6,24 +6,24 @@ from collections.abc import Callable, Sequence
 from functools import lru_cache
 
 from specflow.model.verdict import CloseOut, Compliance, Label, Verdict
-from specflow.verification.compliance import Facts, compliance
+from specflow.verification.compliance import StatusFacts, compliance
 
 
-def waived(facts: Facts) -> bool:
+def waived(facts: StatusFacts) -> bool:
     """Whether waivers cover all that fails; an open nonconformance keeps the row failing until it is closed."""
     return facts.fails and facts.waiving.all_covered and not facts.nonconformances
 
 
-def _ready(facts: Facts) -> bool:
+def _ready(facts: StatusFacts) -> bool:
     return compliance(facts) is Compliance.COMPLIANT
 
 
-def _verified(facts: Facts) -> bool:
+def _verified(facts: StatusFacts) -> bool:
     return _ready(facts) and facts.approved and not (facts.nonconformances or facts.open_children)
 
 
 #: When each label applies. The order is that of ``Label``: the first that applies is shown.
-_APPLIES: dict[Label, Callable[[Facts], bool]] = {
+_APPLIES: dict[Label, Callable[[StatusFacts], bool]] = {
     Label.NOT_APPLICABLE: lambda facts: not facts.applicable,
     Label.WAIVER_EXCEEDED: lambda facts: facts.fails and bool(facts.waiving.exceeded),
     Label.FAILING: lambda facts: compliance(facts) is Compliance.NON_COMPLIANT and not waived(facts),
@@ -53,7 +53,7 @@ _AFTER_MARGINAL = _ORDER[list(Label).index(Label.MARGINAL) + 1 :]
 
 
 @lru_cache(maxsize=1024)
-def label_and_close_out(facts: Facts) -> tuple[Label, CloseOut, str]:
+def label_and_close_out(facts: StatusFacts) -> tuple[Label, CloseOut, str]:
     """Return the label, and open or closed with the reason; a marginal result is shown and keeps no row open.
 
     Remembered by the facts: of most requirements they are the same few.
@@ -63,11 +63,11 @@ def label_and_close_out(facts: Facts) -> tuple[Label, CloseOut, str]:
     return (first, *_close_out(facts, reason))
 
 
-def _first(facts: Facts, order: Sequence[tuple[Label, Callable[[Facts], bool]]]) -> Label:
+def _first(facts: StatusFacts, order: Sequence[tuple[Label, Callable[[StatusFacts], bool]]]) -> Label:
     return next((one for one, applies in order if applies(facts)), Label.INCONCLUSIVE)
 
 
-def _close_out(facts: Facts, reason: Label) -> tuple[CloseOut, str]:
+def _close_out(facts: StatusFacts, reason: Label) -> tuple[CloseOut, str]:
     if reason is Label.NOT_APPLICABLE:
         return CloseOut.CLOSED, f"not applicable: {facts.not_applicable_reason}"
     if reason is Label.CLOSED_WAIVED:
@@ -77,7 +77,7 @@ def _close_out(facts: Facts, reason: Label) -> tuple[CloseOut, str]:
     return CloseOut.OPEN, _open_reason(facts, reason)
 
 
-def _open_reason(facts: Facts, reason: Label) -> str:
+def _open_reason(facts: StatusFacts, reason: Label) -> str:
     parts = [reason.value]
     if reason is Label.WAIVER_EXCEEDED:
         parts = list(facts.waiving.exceeded)

@@ -14,7 +14,7 @@ from specflow.verification.waiving import NO_WAIVER, Waiving
 
 
 @dataclass(frozen=True, slots=True)
-class Facts:
+class StatusFacts:
     """What the axes, the label and the close-out of a requirement are derived from.
 
     ``counted``: something counts; ``in_progress``: there are readings, which may not. ``not_representative`` are the
@@ -49,7 +49,7 @@ class Facts:
         return bool(self.verdicts & {Verdict.FAIL, Verdict.CONDITIONAL_FAIL})
 
 
-def compliance(facts: Facts) -> Compliance:
+def compliance(facts: StatusFacts) -> Compliance:
     """Return the compliance that the facts come to."""
     if not facts.applicable:
         return Compliance.NOT_APPLICABLE

@@ -28,7 +28,7 @@ from specflow.model.block import HardwareType
 from specflow.model.evidence import EvidenceTable
 from specflow.model.requirement import Activity, Method, Provers, Stage
 from specflow.verification.model_range import is_validated
-from specflow.verification.records import Records, Source
+from specflow.verification.records import Records, SourceColumn
 from specflow.verification.standing import ACCEPTED, STALE
 from specflow.verification.workspace import Workspace
 
@@ -68,7 +68,7 @@ class Credit:
         return Credit(self.rank[pairs], self.counts[pairs], self.stale[pairs], self.why)
 
 
-def is_of_design(source: Source) -> bool:
+def is_of_design(source: SourceColumn) -> bool:
     """Whether evidence is about the design and so holds for every item of the block."""
     return is_about_design(source.table)
 
@@ -138,7 +138,7 @@ def _named(provers: Provers, workspace: Workspace) -> frozenset[str]:
     return frozenset(code_key(getattr(workspace.item(name), "id", name)) for name in provers.items)
 
 
-def _no_credit(activity: Activity, source: Source, workspace: Workspace) -> str:
+def _no_credit(activity: Activity, source: SourceColumn, workspace: Workspace) -> str:
     table = source.table
     if table.method not in _SERVES[activity.method]:
         return f"{table.id}: {_articled(table.method)} does not close {_articled(activity.method)}"
@@ -155,7 +155,7 @@ def _articled(method: Method) -> str:
 
 def _item_reason(
     activity: Activity,
-    source: Source,
+    source: SourceColumn,
     item: str,
     named: frozenset[str],
     several: bool,
@@ -174,13 +174,13 @@ def _item_reason(
     return ""
 
 
-def _is_representative(activity: Activity, source: Source, item: str, workspace: Workspace) -> bool:
+def _is_representative(activity: Activity, source: SourceColumn, item: str, workspace: Workspace) -> bool:
     if source.table.method not in OBSERVED:
         return True
     return _HARDWARE[workspace.hardware_type(item)] >= _HARDWARE[activity.credit_from]
 
 
-def _rank(activity: Activity, source: Source, representative: bool, workspace: Workspace) -> int:
+def _rank(activity: Activity, source: SourceColumn, representative: bool, workspace: Workspace) -> int:
     table = source.table
     if code_key(table.file) in workspace.datasheets:
         return ESTIMATE

@@ -15,7 +15,7 @@ from specflow.model.requirement import Requirement
 from specflow.model.verdict import CloseOut, Compliance, Label, RequirementStatus, Verdict
 from specflow.verification.applicability import applicability
 from specflow.verification.assessment import Assessment
-from specflow.verification.compliance import Facts
+from specflow.verification.compliance import StatusFacts
 from specflow.verification.decisions import Decisions
 from specflow.verification.docket import Docket
 from specflow.verification.status import own_facts, status_from, with_evidence
@@ -59,7 +59,7 @@ def status_by_children(
     return status if worst is None else replace(status, governing=worst.governing, unit=worst.unit)
 
 
-def _of_children(facts: Facts, binding: Sequence[RequirementStatus]) -> Facts:
+def _of_children(facts: StatusFacts, binding: Sequence[RequirementStatus]) -> StatusFacts:
     """Return what follows from the children that count."""
     verdicts = frozenset(_VERDICTS[child.compliance] for child in binding) or frozenset({Verdict.NONE})
     return replace(

@@ -31,7 +31,7 @@ from specflow.statistics.decision import (
     margins,
     nothing_acceptable,
 )
-from specflow.statistics.rounding import digit_of, rounded
+from specflow.statistics.rounding import digit_of, round_values
 from specflow.units import Unit, closeness, converter, parse_unit, tolerance_unit
 from specflow.verification.bandwidths import in_bandwidth_of_limit
 from specflow.verification.limit_inputs import is_plain
@@ -246,8 +246,8 @@ def _compared(low: Array, high: Array, judgement: Judgement) -> tuple[Seen, list
 
 
 def _rounded(low: Array, high: Array, step: Decimal) -> tuple[Array, Array]:
-    seen = rounded(low, step)
-    return seen, seen if high is low else rounded(high, step)
+    seen = round_values(low, step)
+    return seen, seen if high is low else round_values(high, step)
 
 
 def _limit_digits(limit: Limit) -> tuple[str, str] | None:

@@ -24,7 +24,7 @@ Rows = NDArray[np.int32]
 
 
 @dataclass(frozen=True, slots=True)
-class Source:
+class SourceColumn:
     """One value column of one evidence table; ``place`` is its position among the value columns."""
 
     table: EvidenceTable
@@ -40,7 +40,7 @@ class Source:
 class Held:
     """What was loaded of one source: its arrays, the item of each row (codes into ``items``) and its standing."""
 
-    source: Source
+    source: SourceColumn
     fit: Fit
     arrays: ValueArrays
     conditions: Columns
@@ -67,7 +67,7 @@ class Records:
     item: NDArray[np.intp]
     items: tuple[str, ...]
     source: Rows
-    sources: tuple[Source, ...]
+    sources: tuple[SourceColumn, ...]
     row: Rows
     standing: NDArray[np.int8]
     all_accepted: bool
@@ -132,7 +132,7 @@ def gather(parts: Sequence[Held], conditions: Columns, mismatches: Sequence[Mism
     return _stacked(held, conditions, refused)
 
 
-def _refused(source: Source, error: UnitError) -> Mismatch:
+def _refused(source: SourceColumn, error: UnitError) -> Mismatch:
     remedy = error.hint or "correct the unit in the mapping of the table"
     return Mismatch(source.table.id, source.column.name, source.table.rows, error.message, remedy, "value")
 

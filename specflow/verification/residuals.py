@@ -23,7 +23,7 @@ from specflow.model.parameter import Better
 from specflow.model.snapshot import Snapshot
 from specflow.parameters import Dictionary
 from specflow.units import convert, parse_unit
-from specflow.verification.records import Source
+from specflow.verification.records import SourceColumn
 
 NEAR_DB = 10 * math.log10(2)
 NEAR_RATIO = math.sqrt(2)
@@ -45,7 +45,7 @@ class Residuals:
                 lines[code_key(entry.set_up), code_key(entry.parameter)].append(entry)
         return cls(dict(lines))
 
-    def bounded(self, source: Source, columns: EvidenceColumns) -> ValueArrays:
+    def bounded(self, source: SourceColumn, columns: EvidenceColumns) -> ValueArrays:
         """Return the values of a source; those near the residual of its set-up are open downwards."""
         arrays = columns.values[source.column.name]
         if not self.lines or not source.table.set_up:
@@ -59,7 +59,7 @@ class Residuals:
         return ValueArrays(np.where(near, -np.inf, arrays.low), arrays.high, arrays.u)
 
 
-def _near(entry: UncertaintyEntry, source: Source, arrays: ValueArrays) -> NDArray[np.bool_]:
+def _near(entry: UncertaintyEntry, source: SourceColumn, arrays: ValueArrays) -> NDArray[np.bool_]:
     unit = parse_unit(source.column.unit or "1")
     try:
         residual = convert(float(entry.residual or 0.0), parse_unit(entry.residual_unit or "1"), unit)

@@ -19,7 +19,7 @@ from specflow.verification.applicability import applicability
 from specflow.verification.assessment import Assessment
 from specflow.verification.case import required_activities
 from specflow.verification.closeout import label_and_close_out, waived
-from specflow.verification.compliance import Facts, compliance
+from specflow.verification.compliance import StatusFacts, compliance
 from specflow.verification.credit import OBSERVED
 from specflow.verification.decisions import Decisions
 from specflow.verification.docket import Docket
@@ -37,7 +37,9 @@ def status_of(
     """Compute the status of a requirement that is proved by its own activities."""
     applies, reason, remarks = applicability(requirement, workspace.declared)
     if not applies:
-        return status_from(requirement, Facts(applicable=False, not_applicable_reason=reason), None, remarks)
+        return status_from(
+            requirement, StatusFacts(applicable=False, not_applicable_reason=reason), None, remarks
+        )
     activities = required_activities(requirement, workspace.snapshot)
     facts = own_facts(requirement, activities, workspace, decisions)
     try:
@@ -50,12 +52,12 @@ def status_of(
 
 def own_facts(
     requirement: Requirement, activities: Sequence[Activity], workspace: Workspace, decisions: Decisions
-) -> Facts:
+) -> StatusFacts:
     """Return what is known of a requirement before its evidence is looked at."""
     approval = decisions.latest_approval(requirement.id)
     approved = approval is not None and approval.decision == "closed"
     limit = requirement.limit
-    return Facts(
+    return StatusFacts(
         to_be_defined=limit.state is LimitState.TBD or undefined_in(limit.tree),
         to_be_reviewed=limit.state is LimitState.TBR,
         unallocated=_unallocated(requirement, workspace, decisions),
@@ -79,8 +81,12 @@ def _unallocated(requirement: Requirement, workspace: Workspace, decisions: Deci
 
 
 def with_evidence(
-    facts: Facts, requirement: Requirement, found: Assessment, workspace: Workspace, decisions: Decisions
-) -> Facts:
+    facts: StatusFacts,
+    requirement: Requirement,
+    found: Assessment,
+    workspace: Workspace,
+    decisions: Decisions,
+) -> StatusFacts:
     """Return the facts with what the evidence comes to."""
     outcomes, failing = found.outcomes, _failing(found)
     results = [outcome.result for outcome in outcomes]
@@ -131,7 +137,7 @@ def _failing(found: Assessment) -> Failing:
 
 
 def status_from(
-    requirement: Requirement, facts: Facts, found: Assessment | None, remarks: Sequence[str]
+    requirement: Requirement, facts: StatusFacts, found: Assessment | None, remarks: Sequence[str]
 ) -> RequirementStatus:
     """Put the axes together."""
     outcomes = found.outcomes if found is not None else ()
@@ -181,7 +187,9 @@ def _or_infinite(value: float) -> float:
     return value if value == value else np.inf
 
 
-def _said(requirement: Requirement, facts: Facts, found: Assessment, decisions: Decisions) -> Sequence[str]:
+def _said(
+    requirement: Requirement, facts: StatusFacts, found: Assessment, decisions: Decisions
+) -> Sequence[str]:
     """Return plain sentences about the status, most important first."""
     said = [*facts.waiving.exceeded, *facts.split_remarks]
     approval = decisions.latest_approval(requirement.id)

@@ -17,7 +17,7 @@ from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Snapshot
 from specflow.model.verdict import Mismatch
 from specflow.parameters.relations import parameters_telling
-from specflow.verification.records import Records, Source
+from specflow.verification.records import Records, SourceColumn
 from specflow.verification.workspace import Workspace
 
 
@@ -120,7 +120,7 @@ def _missed_elsewhere(table: EvidenceTable, workspace: Workspace) -> list[str]:
     A requirement whose plane was changed must not lose sight of a fail that stands under the old one.
     """
     asking = workspace.snapshot.requirements_of_block.get(code_key(table.block), ())
-    sources = [Source(table, column, place) for place, column in enumerate(table.values)]
+    sources = [SourceColumn(table, column, place) for place, column in enumerate(table.values)]
     return [
         requirement.id
         for requirement in asking

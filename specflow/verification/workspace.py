@@ -39,7 +39,7 @@ from specflow.verification.comparable import IDENTITY, Fit, Wanted, fit
 from specflow.verification.limit_inputs import is_plain
 from specflow.verification.map_choice import MapChoice
 from specflow.verification.peak_lists import scanned
-from specflow.verification.records import Held, Records, Source, gather, no_records
+from specflow.verification.records import Held, Records, SourceColumn, gather, no_records
 from specflow.verification.residuals import Residuals
 from specflow.verification.stacking import speaking, stack
 from specflow.verification.standing import RowStanding, StandingRegister
@@ -101,16 +101,16 @@ class Workspace:
         return found
 
     @cached_property
-    def sources(self) -> Mapping[tuple[str, str], Sequence[Source]]:
+    def sources(self) -> Mapping[tuple[str, str], Sequence[SourceColumn]]:
         """All value columns, by block and parameter."""
-        found: dict[tuple[str, str], list[Source]] = defaultdict(list)
+        found: dict[tuple[str, str], list[SourceColumn]] = defaultdict(list)
         for table in self.snapshot.tables:
             for place, column in enumerate(table.values):
                 key = code_key(table.block), code_key(column.quantity.parameter)
-                found[key].append(Source(table, column, place))
+                found[key].append(SourceColumn(table, column, place))
         return dict(found)
 
-    def sources_for(self, block: str, parameter: str) -> Sequence[Source]:
+    def sources_for(self, block: str, parameter: str) -> Sequence[SourceColumn]:
         """Return the value columns of a parameter of a block, then those of parameters that tell it by a relation."""
         of_block, own = code_key(block), code_key(parameter)
         found = self.sources.get((of_block, own), ())
@@ -224,7 +224,7 @@ class Workspace:
             found = self._records[key] = self._gathered(requirement.block, want, sources, own)
         return found
 
-    def _gathered(self, block_id: str, want: Wanted, sources: Sequence[Source], own: str) -> Records:
+    def _gathered(self, block_id: str, want: Wanted, sources: Sequence[SourceColumn], own: str) -> Records:
         held: list[Held] = []
         mismatches: list[Mismatch] = []
         aside: list[
@@ -245,14 +245,14 @@ class Workspace:
             return no_records([*mismatches, *aside])
         return gather(held, self._stack([one.source.table.id for one in held]), mismatches)
 
-    def _fit(self, source: Source, want: Wanted, block_id: str) -> Fit | Mismatch:
+    def _fit(self, source: SourceColumn, want: Wanted, block_id: str) -> Fit | Mismatch:
         block, parameter = (
             self.snapshot.find(Block, block_id),
             self.dictionary.get(want.quantity.parameter),
         )
         return fit(source.table, source.column, want, block, parameter)
 
-    def _held(self, source: Source, how: Fit, outdated: str = "") -> Held:
+    def _held(self, source: SourceColumn, how: Fit, outdated: str = "") -> Held:
         columns = self.columns(source.table.id)
         codes, items = self._item_codes(source.table.id, columns.items)
         standing = self._standing(source, columns)
@@ -261,7 +261,7 @@ class Workspace:
             standing = standing.outdated(outdated)
         return Held(source, how, arrays, columns.conditions, codes, items, standing)
 
-    def misses_elsewhere(self, source: Source, requirement: Requirement) -> bool:
+    def misses_elsewhere(self, source: SourceColumn, requirement: Requirement) -> bool:
         """Whether a source fails a plain limit that it may not be held against because its identity differs."""
         limit, want = requirement.limit, Wanted(requirement.quantity, requirement.limit.unit)
         found = self._fit(source, want, requirement.block)
@@ -296,7 +296,7 @@ class Workspace:
             found = self._items[table] = _coded(names, lambda name: getattr(self.item(name), "id", name))
         return found
 
-    def _standing(self, source: Source, columns: EvidenceColumns) -> RowStanding:
+    def _standing(self, source: SourceColumn, columns: EvidenceColumns) -> RowStanding:
         changed = code_key(source.table.block) in self.register.changes
         key = source.table.id, code_key(source.column.quantity.parameter) if changed else ""
         found = self._standings.get(key)
@@ -308,7 +308,7 @@ class Workspace:
         return found
 
 
-def _of(source: Source, want: Wanted) -> Wanted:
+def _of(source: SourceColumn, want: Wanted) -> Wanted:
     """Return what is wanted with the plane, statistic, bandwidth and polarisation that the source has."""
     recorded = source.column.quantity
     return replace(want, quantity=recorded.model_copy(update={"parameter": want.quantity.parameter}))

@@ -38,10 +38,10 @@ from specflow.model.limit import (
     Percentile,
     Population,
     PowerSum,
-    Rule,
     Segment,
     Side,
     Slope,
+    Stringency,
     Tolerance,
     ToleranceBound,
     Undefined,
@@ -180,7 +180,7 @@ def _composed(inner: st.SearchStrategy[LimitNode]) -> st.SearchStrategy[LimitNod
     cases = st.lists(st.builds(Case, when=conditions, limit=inner), min_size=1, max_size=3).map(tuple)
     return st.one_of(
         st.builds(Cases, cases=cases, otherwise=st.one_of(st.none(), inner)),
-        st.builds(Alternatives, rule=st.sampled_from(Rule), members=several),
+        st.builds(Alternatives, rule=st.sampled_from(Stringency), members=several),
         st.builds(PowerSum, members=several, bandwidth=st.one_of(st.none(), _bandwidth)),
         st.builds(Gate, when=conditions, limit=inner),
         st.builds(MeasuredIn, limit=inner, bandwidth=_bandwidth),

@@ -21,7 +21,7 @@ from specflow.limits import (
     rule_of,
 )
 from specflow.model.columns import Columns, TextColumn
-from specflow.model.limit import Rule
+from specflow.model.limit import Stringency
 from specflow.units import Quantity, parse_quantity
 
 
@@ -234,7 +234,7 @@ def test_alternatives_on_different_quantities_are_judged_apart() -> None:
     first, second = alternatives(limit)
     assert (first.quantity, first.limit.unit) == ("", "dB")
     assert (second.quantity, second.limit.unit) == ("acp_density", "dBm/MHz")
-    assert rule_of(limit) is Rule.LOOSER
+    assert rule_of(limit) is Stringency.LOOSER
     passed = [np.array([True, False, False]), np.array([False, True, False])]
     assert choose(limit, passed).tolist() == [True, True, False]
     assert choose(parse_limit("stricter(>= 28 dB; <= -13 dBm/MHz)"), passed).tolist() == [False, False, False]

@@ -7,7 +7,7 @@ from decimal import Decimal
 import numpy as np
 import pytest
 
-from specflow.statistics.rounding import digit_of, round_to, rounded
+from specflow.statistics.rounding import digit_of, round_to, round_values
 
 
 def test_the_trailing_zero_of_a_limit_is_data() -> None:
@@ -21,7 +21,7 @@ def test_two_point_five_five_is_rounded_as_written_and_not_as_held() -> None:
     assert round(2.55, 1) == 2.5
     assert round_to("2.55", Decimal("0.1")) == Decimal("2.6")
     assert round_to("2.45", Decimal("0.1")) == Decimal("2.4")
-    assert rounded(np.array([2.55, np.nan, -np.inf]), Decimal("0.1")) == pytest.approx(
+    assert round_values(np.array([2.55, np.nan, -np.inf]), Decimal("0.1")) == pytest.approx(
         [2.6, np.nan, -np.inf], nan_ok=True
     )
 

@@ -10,7 +10,7 @@ from specflow.model.card import BarAxis, MarginBar, PointState, ProofCell, Proof
 from specflow.model.origin import Origin
 from specflow.model.outline import OutlineEntry
 from specflow.tui.tones import POINT_MARKS, POINT_STYLES
-from specflow.tui.widgets.facts import fact_lines
+from specflow.tui.widgets.fact_list import fact_lines
 from specflow.tui.widgets.margin_bar import GUARD, LEFT, LIMIT, OUTSIDE, POINT, RIGHT, Scale, bar_lines
 from specflow.tui.widgets.proof_grid import Layout, Place, _header, _row_title
 from specflow.tui.widgets.requirement_tree import visible

@@ -10,39 +10,39 @@ import pytest
 from specflow.model.requirement import Method
 from specflow.model.verdict import CloseOut, Compliance, Label, Verdict
 from specflow.verification.closeout import label_and_close_out
-from specflow.verification.compliance import Facts, compliance
+from specflow.verification.compliance import StatusFacts, compliance
 from specflow.verification.waiving import Waiving
 from tests.builders import an_activity, an_evidence_table, an_item, some_evidence
 from tests.verification.evaluating import status_of
 
 
-def label(facts: Facts) -> Label:
+def label(facts: StatusFacts) -> Label:
     return label_and_close_out(facts)[0]
 
 
-def close_out(facts: Facts) -> tuple[CloseOut, str]:
+def close_out(facts: StatusFacts) -> tuple[CloseOut, str]:
     return label_and_close_out(facts)[1:]
 
 
-READY = Facts(counted=True, complete=True, verdicts=frozenset({Verdict.PASS}), some_proved=True)
+READY = StatusFacts(counted=True, complete=True, verdicts=frozenset({Verdict.PASS}), some_proved=True)
 FAILS = replace(READY, complete=False, verdicts=frozenset({Verdict.PASS, Verdict.FAIL}))
 
 
-def without(*verdicts: Verdict) -> Facts:
+def without(*verdicts: Verdict) -> StatusFacts:
     return replace(READY, complete=False, verdicts=frozenset({Verdict.PASS, *verdicts}))
 
 
-ROWS: Mapping[Label, Facts] = {
+ROWS: Mapping[Label, StatusFacts] = {
     Label.NOT_APPLICABLE: replace(READY, applicable=False, not_applicable_reason="no such port"),
     Label.WAIVER_EXCEEDED: replace(FAILS, waiving=Waiving(exceeded=("waiver W-1 has lapsed",))),
     Label.FAILING: FAILS,
     Label.PARTIALLY_COMPLIANT: replace(FAILS, split_declared=True),
     Label.CONFLICTING: replace(READY, conflicting=True),
     Label.REVERIFY: replace(without(Verdict.NONE), stale=True),
-    Label.TBD: replace(Facts(), to_be_defined=True),
+    Label.TBD: replace(StatusFacts(), to_be_defined=True),
     Label.UNALLOCATED: replace(READY, unallocated=True),
-    Label.NOT_PLANNED: Facts(planned=False),
-    Label.PLANNED: Facts(),
+    Label.NOT_PLANNED: StatusFacts(planned=False),
+    Label.PLANNED: StatusFacts(),
     Label.UNDECIDABLE: without(Verdict.UNDECIDABLE),
     Label.INSUFFICIENT: without(Verdict.INSUFFICIENT),
     Label.PARTIALLY_VERIFIED: without(Verdict.NONE),
@@ -64,9 +64,9 @@ def test_each_label_is_reached(expected: Label) -> None:
     assert label(ROWS[expected]) is expected
 
 
-def merged(first: Facts, second: Facts) -> Facts:
+def merged(first: StatusFacts, second: StatusFacts) -> StatusFacts:
     """Return facts of which everything is true that is true in either."""
-    return Facts(
+    return StatusFacts(
         applicable=first.applicable and second.applicable,
         to_be_defined=first.to_be_defined or second.to_be_defined,
         to_be_reviewed=first.to_be_reviewed or second.to_be_reviewed,

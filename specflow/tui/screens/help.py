@@ -14,11 +14,11 @@ from textual.widgets import Static
 from specflow.model.card import PointState
 from specflow.tui.tones import POINT_MARKS
 from specflow.tui.widgets.card_view import CardView
-from specflow.tui.widgets.facts import Facts
+from specflow.tui.widgets.divider import Divider
+from specflow.tui.widgets.fact_list import FactList
 from specflow.tui.widgets.margin_bar import GUARD, LIMIT, OUTSIDE
 from specflow.tui.widgets.proof_grid import ProofGridView
 from specflow.tui.widgets.requirement_tree import RequirementTree
-from specflow.tui.widgets.rule import Rule
 from specflow.tui.widgets.search import SearchLine
 
 NAME_WIDTH = 11
@@ -56,8 +56,8 @@ class HelpScreen(ModalScreen[None]):
             box.border_title = "help"
             box.border_subtitle = "escape closes"
             for title, keys in self.sections():
-                yield Rule(title)
-                yield Facts(keys, name_width=NAME_WIDTH)
+                yield Divider(title)
+                yield FactList(keys, name_width=NAME_WIDTH)
             for caution in self._cautions:
                 yield Static(Content(caution), classes="caution")
 

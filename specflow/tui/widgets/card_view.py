@@ -14,13 +14,13 @@ from textual.widgets import Static
 
 from specflow.model.card import Card
 from specflow.model.finding import Finding
-from specflow.tui.widgets.facts import Facts
+from specflow.tui.widgets.divider import Divider
+from specflow.tui.widgets.fact_list import FactList
 from specflow.tui.widgets.findings import FindingsView
 from specflow.tui.widgets.margin_bar import MarginBarView
 from specflow.tui.widgets.picture import PictureView
 from specflow.tui.widgets.proof_grid import ProofGridView
 from specflow.tui.widgets.proved_line import ProvedLine
-from specflow.tui.widgets.rule import Rule
 from specflow.tui.widgets.trail import TrailView
 
 
@@ -104,26 +104,26 @@ def _parts(card: Card) -> Iterator[Widget]:
     yield Static(Content(card.limit_words), classes="text")
     yield ProvedLine(card.k, card.n, card.proved)
     if card.bar is not None:
-        yield Rule("margin bar")
+        yield Divider("margin bar")
         yield MarginBarView(card.bar)
     if card.grids:
-        yield Rule("proof grid")
+        yield Divider("proof grid")
         for grid in card.grids:
             yield ProofGridView(grid)
     if card.remarks:
-        yield Rule("remarks")
+        yield Divider("remarks")
         yield Static(Content("\n").join([Content(f"• {remark}") for remark in card.remarks]), classes="text")
-    yield Rule("facts")
-    yield Facts((*card.facts, ("As written", card.limit_text)))
+    yield Divider("facts")
+    yield FactList((*card.facts, ("As written", card.limit_text)))
     if card.pictures:
-        yield Rule("predicted by its budgets")
+        yield Divider("predicted by its budgets")
         for picture in card.pictures:
             yield PictureView(picture)
     if card.traces:
-        yield Rule("raw data")
+        yield Divider("raw data")
         for picture in card.traces:
             yield PictureView(picture)
-    yield Rule("trail")
+    yield Divider("trail")
     yield TrailView(card.trail)
     yield from _findings(card.findings)
     for caution in card.cautions:
@@ -132,8 +132,8 @@ def _parts(card: Card) -> Iterator[Widget]:
 
 def _findings(findings: Sequence[Finding] | None) -> Iterator[Widget]:
     if findings is None:
-        yield Rule("findings")
+        yield Divider("findings")
         yield Static(Content("the rules are running ..."), classes="text")
         return
-    yield Rule(f"findings ({len(findings)})")
+    yield Divider(f"findings ({len(findings)})")
     yield FindingsView(findings) if findings else Static(Content("none"), classes="text")

@@ -7,11 +7,11 @@ from textual.content import Content
 from textual.widget import Widget
 
 
-class Rule(Widget):
+class Divider(Widget):
     """One line, as wide as there is room."""
 
     DEFAULT_CSS = """
-    Rule { height: 1; }
+    Divider { height: 1; }
     """
 
     def __init__(self, title: str) -> None:

@@ -10,11 +10,11 @@ from textual.geometry import Size
 from textual.widget import Widget
 
 
-class Facts(Widget):
+class FactList(Widget):
     """Values stand below each other; long ones are folded under themselves."""
 
     DEFAULT_CSS = """
-    Facts { height: auto; }
+    FactList { height: auto; }
     """
 
     def __init__(self, facts: Sequence[tuple[str, str]], name_width: int = 0) -> None:
