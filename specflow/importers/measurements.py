@@ -151,7 +151,7 @@ def _of_network(
     read = read_network_tables(network, context, given, person, IMPORTER_VERSION)
     file = _file(network.fingerprint, read.tables, person)
     unused = [_unused(network.fingerprint.name, layout, given.name) for layout in read.unused_layouts]
-    return Measurements(file, read.tables, (*read.findings, *unused), (), read.proposal)
+    return Measurements(file, read.tables, (*read.findings, *unused), read.skipped, read.proposal)
 
 
 def _read(

@@ -43,9 +43,10 @@ _MOST_UNUSED = 12
 
 @dataclass(frozen=True)
 class NetworkReading:
-    """The tables of a network file, findings about the file, and a mapping to be edited."""
+    """The tables of a network file, why it is skipped, findings about the file, and a mapping to be edited."""
 
     tables: tuple[MeasuredTable, ...]
+    skipped: tuple[str, ...]
     findings: tuple[Finding, ...]
     unused_layouts: tuple[str, ...]
     proposal: str
@@ -62,9 +63,10 @@ def read_network_tables(
     reading = _Reading(network, context, given, person, importer)
     tables = reading.tables()
     findings = [_finding(network, remark.line, remark.what) for remark in network.remarks if remark.warns]
-    return NetworkReading(
-        tuple(tables), tuple(findings), tuple(reading.mappings.unused()), reading.proposal()
-    )
+    where = network.fingerprint.name
+    skipped = () if tables else (f"{where}: {reading.mapping_from} says skip",)
+    unused = tuple(reading.mappings.unused())
+    return NetworkReading(tuple(tables), skipped, tuple(findings), unused, reading.proposal())
 
 
 def network_layout(network: NetworkFile) -> str:
@@ -112,8 +114,12 @@ class _Reading:
         self.stated.conditions.pop(self.settled.axis.dimension, None)
 
     def tables(self) -> list[MeasuredTable]:
-        """The raw table, and the noise block once nothing is open."""
+        """The raw table, and the noise block once nothing is open; none where the mapping says skip."""
+        if self.mapping.skip:
+            return []
         work = self._work()
+        if self.mapping.columns or self.mapping.pivots or self.mapping.long or self.mapping.matrix:
+            work.notes.append("the mapping speaks of columns; a network file has none, and they are not used")
         for key in unknown_ports(self.network.ports, self.said):
             work.ask(key, "", f"the file has {self.network.ports} ports and no {key}", "name another port")
         raw = self._table(work, scattering_table(self.network), self.settled.axis)
@@ -183,6 +189,7 @@ class _Reading:
             document=document,
             columns=None if document is None else arrays,
             plans=tuple(plans) if document is not None else (),
+            asked=() if columns.is_noise else tuple(self.mapping.derive),
         )
 
     def _arrays(

@@ -69,7 +69,7 @@ def named_ports(
     for place in range(count):
         for said, who in ((person, "stated by the person"), (mapping, "stated by the mapping")):
             text = next((value for key, value in said.items() if _number(key) == place + 1), "").strip()
-            if text and not names[place]:
+            if text not in ("", "?") and not names[place]:  # a proposed mapping has "?" for what nobody named
                 names[place], by[place] = text, who
         if not names[place] and place < len(comments) and comments[place]:
             names[place], by[place] = comments[place], "a comment of the file"

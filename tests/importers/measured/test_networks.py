@@ -431,6 +431,16 @@ def test_a_mapping_names_the_ports_and_is_known_again_by_the_shape(amplifier: Pa
     assert planned(person) == [("gain", "gain", "S12")]
 
 
+def test_a_mapping_may_skip_a_file_or_ask_for_laws(amplifier: Path) -> None:
+    proposal = read(amplifier).proposal
+    nobody = read(amplifier, wanted("gain"), mapping=proposal).tables[0]
+    assert "no port is named" in nobody.questions[0].what  # "?" names no port
+    left = read(amplifier, mapping=proposal.replace("[[table]]", "[[table]]\nskip = true"))
+    assert not left.tables and left.skipped == ("amp.s2p: the mapping file mapping says skip",)
+    law = '\n[[table.derive]]\nlaw = "gain"\nvalues = ["S21 magnitude", "S21 angle"]\ngives = "gain"\n'
+    assert [one.law for one in read(amplifier, mapping=proposal + law).tables[0].asked] == ["gain"]
+
+
 def test_a_port_that_is_not_there_is_asked(amplifier: Path) -> None:
     assert any("no port 3" in one.what for one in raw(amplifier, **{"port 3": "output"}).questions)
 
