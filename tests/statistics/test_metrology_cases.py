@@ -235,7 +235,7 @@ def _rounding(i: Answer) -> Answer:
     step = rounding.digit_of(i["unit_of_limit"])
     plain, near = float(i["observed"]), float(rounding.round_to(i["observed"], step))
     met = (lambda x: x <= i["limit"]) if i["kind"] == "max" else (lambda x: x >= i["limit"])
-    assert rounding.rounded(np.array([plain]), step)[0] == pytest.approx(near, abs=1e-12)
+    assert rounding.round_values(np.array([plain]), step)[0] == pytest.approx(near, abs=1e-12)
     return {"rounded": near, "rounding_method_pass": met(near), "absolute_method_pass": met(plain)}
 
 
