@@ -6,6 +6,7 @@ from datetime import date
 from typing import Any
 
 SCAN, MASK, RECEIVE, TILE, SUPPLY = "CS-TX-SCAN", "CS-TX-MASK", "CS-RX", "CS-TX-PLATE", "CS-SUPPLY"
+BAND = "CS-RX-BAND"
 
 BLOCKS = [
     # id, name, parent, kind, quantity, planes, paths, owner, maturity
@@ -110,11 +111,12 @@ ITEMS = [
     ("TILE-3", "TX-TILE", "T-0103", "engineering", "B", "1.4.2", "UT-07"),
     ("CONV-1", "UPC", "FC-021", "engineering", "A", "", "UT-07"),
     ("CONV-2", "DNC", "FC-022", "engineering", "A", "", "UT-07"),
+    ("RXP-1", "RXA", "RP-0007", "engineering", "A", "", "UT-07"),
     ("LNA-1", "RX-LNA", "L-0441", "engineering", "A", "", "UT-07"),
 ]
 
 CONDITIONS = [
-    # id, title, dimension, required, tolerance (36, 6 ranges, 9, 9 and 9 required points)
+    # id, title, dimension, required, tolerance (36, 6 ranges, 9, 3 ranges, 9 and 9 required points)
     (SCAN, "Transmit band, temperature and beam directions", "frequency", "27.5, 28.75, 30 GHz", "10 MHz"),
     (SCAN, "", "temperature_ambient", "-25, 23, 55 °C", "3 K"),
     (SCAN, "", "scan_theta; scan_phi", "0 deg; 0 deg", "1 deg; 1 deg"),
@@ -126,6 +128,8 @@ CONDITIONS = [
     (MASK, "", "phi", "0, 90 deg", ""),
     (RECEIVE, "Receive band and temperature", "frequency", "17.7, 18.95, 20.2 GHz", "10 MHz"),
     (RECEIVE, "", "temperature_ambient", "-25, 23, 55 °C", "3 K"),
+    (BAND, "Receive band from end to end", "frequency", "17.7 to 20.2 GHz step 0.1 GHz", "10 MHz"),
+    (BAND, "", "temperature_ambient", "-25, 23, 55 °C", "3 K"),
     (TILE, "Transmit band on the cold plate", "frequency", "27.5, 28.75, 30 GHz", "10 MHz"),
     (TILE, "", "temperature_baseplate", "-7, 41, 73 °C", "3 K"),
     (SUPPLY, "Ship's supply and temperature", "temperature_ambient", "-25, 23, 55 °C", "3 K"),

@@ -28,7 +28,7 @@ from collections.abc import Sequence
 from datetime import date
 from typing import Any
 
-from ferry_product import BLOCKS, MASK, RECEIVE, SCAN, SUPPLY, TILE
+from ferry_product import BAND, BLOCKS, MASK, RECEIVE, SCAN, SUPPLY, TILE
 
 Row = dict[str, Any]
 SPECIFICATION = "Harbour ferry terminal specification (invented)"
@@ -283,7 +283,7 @@ ASSEMBLIES = [
     requirement(
         "RXA-NF-1", "Noise figure of the panel", "RXA", "noise_figure", "<= 2.3 dB", RECEIVE, "UT-GOT-1"
     ),
-    requirement("RXA-FLT-1", "Gain flatness", "RXA", "gain_flatness", "<= 1.5 dB", RECEIVE, "UT-GOT-1"),
+    requirement("RXA-FLT-1", "Gain flatness", "RXA", "gain_flatness", "<= 1.5 dB", BAND, "UT-GOT-1"),
     requirement(
         "RXA-DIS-1",
         "Dissipation",

@@ -9,7 +9,13 @@ import sys
 from pathlib import Path
 
 import gateway
-from ferry_results import array_simulation, array_two_laboratories, converter_bench, tile_and_amplifier
+from ferry_results import (
+    array_simulation,
+    array_two_laboratories,
+    converter_bench,
+    receive_panel_sweep,
+    tile_and_amplifier,
+)
 from ferry_specification import specification_sheets
 from workbooks import write_book
 
@@ -24,6 +30,7 @@ def make(folder: Path = HERE) -> None:
     write_book(results / "array_simulation.xlsx", "Array simulation", array_simulation())
     write_book(results / "array_two_laboratories.xlsx", "Array at two ranges", array_two_laboratories())
     write_book(results / "converter_bench.xlsx", "Converter bench", converter_bench())
+    write_book(results / "receive_panel_sweep.xlsx", "Receive panel", receive_panel_sweep())
     write_book(results / "tile_and_amplifier.xlsx", "Tile and amplifier", tile_and_amplifier())
     write_book(
         folder / "gateway" / "gateway-requirements.xlsx",

@@ -16,6 +16,7 @@ import pytest
 from specflow.importers.measurements import read_measurements
 from specflow.importers.workbook import read_workbook
 from specflow.model.conditions import ConditionsSet
+from specflow.model.derivation import Derivation
 from specflow.model.evidence import EvidenceTable
 from specflow.model.finding import Severity
 from specflow.model.project import Project
@@ -60,7 +61,7 @@ def content(path: Path) -> dict[str, bytes]:
 def test_the_script_writes_all_files_that_are_committed(rewritten: Path) -> None:
     made = sorted(path.relative_to(rewritten) for path in rewritten.rglob("*") if path.is_file())
     assert made == WRITTEN
-    assert len(made) == 7
+    assert len(made) == 8
 
 
 @pytest.mark.parametrize("name", WRITTEN, ids=str)
@@ -113,7 +114,7 @@ def test_the_ferry_has_the_size_that_is_promised(evaluation: Evaluation) -> None
         "block",
     }
     assert len(snapshot.blocks) == 12
-    assert len(snapshot.all(ConditionsSet)) == 5
+    assert len(snapshot.all(ConditionsSet)) == 6
     assert [item.serial for item in snapshot.items if item.block == "UT"] == ["HF-0007", "HF-0008"]
     assert snapshot.project.invented
 
@@ -228,6 +229,18 @@ def test_two_laboratories_that_contradict_each_other_are_a_conflict(evaluation: 
     assert conflict.allowed == pytest.approx((1.0**2 + 1.2**2) ** 0.5)
     assert "28.75 GHz" in conflict.words
     assert "conflicting-evidence" in rules_about(evaluation, "UT-XPD-1")
+
+
+def test_a_hole_in_a_trace_leaves_one_range_without_a_flatness(evaluation: Evaluation) -> None:
+    found = status(evaluation, "RXA-FLT-1")
+    assert (found.k, found.n, found.n_failing) == (2, 3, 0)
+    (derived,) = [one for one in evaluation.snapshot.all(EvidenceTable) if one.derivation]
+    (derivation,) = evaluation.snapshot.all(Derivation)
+    assert (derivation.law, derivation.gives.parameter, derived.rows) == ("ripple", "gain_flatness", 2)
+    (left,) = derived.left_out
+    assert left.text == "item RP-0007, +55 °C ambient"
+    assert left.reason == "no value between 18.9 and 19.2 GHz; the step is 0.1 GHz"
+    assert "left-out-cells" in rules_about(evaluation, derived.id)
 
 
 def test_hidden_row_and_mean_are_left_out_and_stay_a_finding(evaluation: Evaluation) -> None:

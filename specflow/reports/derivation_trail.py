@@ -29,7 +29,7 @@ def derivation_steps(
 
 def _place(at: TextColumn | None, row: int) -> str:
     word = "" if at is None else at.word(row)
-    return f", at {word}" if word else ""
+    return f" · {word}" if word else ""
 
 
 def table_derivation_steps(

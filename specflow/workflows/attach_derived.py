@@ -197,4 +197,5 @@ def planned_result(one: PlannedTable) -> str:
         return f"not derived: {one.failure}"
     if one.stored_as:
         return f"stored as {one.stored_as}"
-    return "; ".join([f"{one.derived.columns.conditions.size} values", *one.derived.notes])
+    refused = [f"not for {lost.group or 'some rows'}: {lost.why}" for lost in one.derived.refused]
+    return "; ".join([f"{one.derived.columns.conditions.size} values", *refused, *one.derived.notes])

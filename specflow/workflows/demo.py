@@ -50,6 +50,7 @@ RESULTS = (
     ResultFile("converter_bench.xlsx", take_rest=True),
     ResultFile("array_two_laboratories.xlsx", mapping="array_two_laboratories.toml"),
     ResultFile("array_simulation.xlsx"),
+    ResultFile("receive_panel_sweep.xlsx", mapping="receive_panel_sweep.toml"),
 )
 
 

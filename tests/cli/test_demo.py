@@ -24,10 +24,12 @@ MADE = {
     "ferry-requirements.xlsx",
     "ferry.specflow",
     "mappings/array_two_laboratories.toml",
+    "mappings/receive_panel_sweep.toml",
     "mappings/tile_and_amplifier.toml",
     "results/array_simulation.xlsx",
     "results/array_two_laboratories.xlsx",
     "results/converter_bench.xlsx",
+    "results/receive_panel_sweep.xlsx",
     "results/tile_and_amplifier.xlsx",
 }
 

@@ -180,7 +180,7 @@ def test_a_derived_value_is_traced_to_the_raw_cell(store: ProjectStore) -> None:
         assert raw.values["Gain"].low[origin] == columns.values["gain"].low[row]
     steps = [[cell.text for cell in row.cells] for row in trace(store, DAY, "R-2").rows]
     told = [cells for cells in steps if "derivation" in cells[0]]
-    assert told and "worst of Gain over frequency" in told[0][2] and "at 18.3 GHz" in told[0][2]
+    assert told and "worst of Gain over frequency" in told[0][2] and "· 18.3 GHz" in told[0][2]
     assert any("input" in cells[0] and "T-1" in cells[1] for cells in steps)
 
 
