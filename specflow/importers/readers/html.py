@@ -21,8 +21,13 @@ def read_html(source: Source) -> list[Grid]:
     """All tables of the page. Raises FileError for a page without one, and for tables inside tables."""
     text, notes = decode(source)
     page = _Page(lambda what, hint: FileError(what, where=source.name, hint=hint))
-    page.feed(text)
-    page.close()
+    try:
+        page.feed(text)
+        page.close()
+    except AssertionError as error:  # the parser of the standard library asserts what the page should be
+        raise FileError(
+            f"the web page is damaged: {error}", where=source.name, hint="export the table as csv or .xlsx"
+        ) from error
     tables = [table for table in page.tables if any(map(any, table.rows))]
     if not tables:
         raise FileError(

@@ -295,7 +295,7 @@ def check_network(content: bytes, grids: list[Grid]) -> int:
     compared = 0
     for number, line, token in grids[0].rows:
         fields = lines[int(str(line)) - 1].split("!")[0].split()
-        written = fields[int(str(token)) - 1]
+        written = fields[int(str(token)) - 1].replace("\0", "")
         assert float(written) == number, f"line {line}, {token}: {number} in {lines[int(str(line)) - 1]!r}"
         compared += 1
     return compared

@@ -314,5 +314,7 @@ def test_tables_of_a_web_page(tmp_path: Path) -> None:
     assert (second.name, second.rows) == ("table 2", [["x"]])
     (tmp_path / "b.html").write_text("<table><tr><td><table></table></td></tr></table>")
     assert "inside another" in refused(lambda: open_grids(tmp_path / "b.html"))
+    (tmp_path / "d.html").write_text("<html><table><tr><td>1<![\u00d4\u00d8<td>2</table>", encoding="utf-8")
+    assert "the web page is damaged" in refused(lambda: open_grids(tmp_path / "d.html"))
     (tmp_path / "c.html").write_text('<table><tr><td rowspan="16000" colspan="16000">1</td></tr></table>')
     assert "more than 2,000,000 cells" in refused(lambda: open_grids(tmp_path / "c.html"))

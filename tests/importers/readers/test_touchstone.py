@@ -504,6 +504,7 @@ HEADS = (
     "! Port 2: mode 1\n",
     "! Vce = 2 V, Ic = 5 mA, measured from 0.1 GHz to 20 GHz\n! Output power at 1 dB compression: 12 dBm typical\n",
     "! Source power -20 dBm, IFBW 1 kHz, 201 points, start 1 GHz, stop 20 GHz\n! Temperature 23 C\n",
+    "! measured from 0.1 GHz on, input at -20 dBm\n! Bias 3V, 20mA: S11 S21 S12 S22\n",
     "! power = -10 dBm\n! Sweep Type: Lin Frequency\n! Stimulus: Frequency\n",
 )  # fmt: skip
 

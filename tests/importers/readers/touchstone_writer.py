@@ -98,7 +98,9 @@ def _frequency(what: Written, value: float, matrix: Pairs) -> list[str]:
 
 
 def _entries(what: Written, row: int) -> list[tuple[int, int]]:
-    columns = {"Lower": range(row + 1), "Upper": range(row, what.ports)}.get(what.matrix_format, range(what.ports))
+    columns = {"Lower": range(row + 1), "Upper": range(row, what.ports)}.get(
+        what.matrix_format, range(what.ports)
+    )
     return [(row, column) for column in columns]
 
 
