@@ -34,9 +34,12 @@ _OTHER_AXIS = re.compile(
     r"\b(?:p_?in|p_?out|p_?avs?|p_?drive|p_?rf|power|pwr|dbm|v_?bias|voltage|current|bias|temp\w*|time|v_?gs?|v_?ds?)\b",
     re.IGNORECASE,
 )
+_VARIABLE = r"(?:power|pwr|p_?in|level|v_?gs?|bias|voltage|temp(?:erature)?)"
 _SWEPT = re.compile(
-    r"power[ _-]*sweep|swept[ _-]*power|\bpower (?:is|was) swept|(?:start|stop|from)\b[^=:]*[=:]?\s*[-+\d.]+\s*dBm\b"
-    r"|sweep(?:[ _](?:type|mode|variable|parameter))?\s*[:=]\s*(?:\w+ )*(?:power|pwr|p_?in|cw|time|voltage|bias)\b"
+    rf"\b{_VARIABLE}[ _-]+(?:(?:is|was)\s+)?(?:sweep|swept)\b|\bswept[ _-]+{_VARIABLE}\b"
+    r"|\b(?:start|stop)(?: power| level)?\s*[=:]?\s*[-+\d.]+\s*dBm\b"
+    r"|\bfrom [-+\d.]+(?: ?dBm)? to [-+\d.]+ ?dBm\b"
+    rf"|sweep(?:[ _](?:type|mode|variable|parameter))?\s*[:=]\s*(?:\w+ )*(?:{_VARIABLE}|cw|time)\b"
     r"|x[ -]?axis\s*[:=](?!\s*freq)",
     re.IGNORECASE,
 )
@@ -178,7 +181,8 @@ def _axis_doubts(comments: Sequence[Comment], shape: Shape) -> Iterator[Doubt]:
         if not match and is_last and not re.search(r"[:=\d]", comment.text):
             head = " ".join(comment.text.split()[:2])
         swept = _SWEPT.search(comment.text)
-        header = head and _OTHER_AXIS.search(head) and not _FREQUENCY.search(head)
+        is_header = head and not re.search(r"\d", head) and not _FREQUENCY.search(head)
+        header = is_header and _OTHER_AXIS.search(head)
         if (header and (match is None or len(mentions(comment.text, shape.parameter)) > 1)) or swept:
             what = f"the comment {comment.text[:60]!r} speaks of an x axis that is no frequency"
             yield Doubt(DoubtKind.X_AXIS, comment.line, what)

@@ -560,6 +560,7 @@ def test_angles_that_look_like_radians_are_said(tmp_path: Path) -> None:
         "! Input power sweep at 28 GHz, Pin from -30 to 10 dBm\n",
         "! swept power, CW frequency 28 GHz\n",
         "! Sweep: power\n",
+        "! Frequency: 28 GHz (fixed), Pin swept\n",
         "! X axis: Vgs\n",
         "! start -30 dBm stop 10 dBm\n",
         "! Pin[dBm]  gain  phase\n",
