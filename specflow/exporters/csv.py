@@ -11,8 +11,8 @@ title = "Comma-separated values"
 extension = ".csv"
 
 # Spreadsheets run a cell that begins so as a formula; a leading apostrophe keeps it text.
-FORMULA_STARTS = ("=", "@", "\t", "\r")
-SIGNS = ("+", "-")
+FORMULA_STARTS = ("=", "@", "\t", "\r", "\n", "＝", "＠")  # the wide forms count in East Asian settings
+SIGNS = ("+", "-", "＋", "－")
 
 
 def render(report: Report) -> bytes:

@@ -34,7 +34,7 @@ def test_lines_end_as_the_rfc_says_and_awkward_text_is_quoted() -> None:
     assert content == b'C0,C1,C2\r\n"a ""quoted"" word","two\nlines","a,b"\r\n'
 
 
-@pytest.mark.parametrize("text", ["=1+1", "@SUM(A1)", "+cmd", "-cmd", "\t=1", "\r=1"])
+@pytest.mark.parametrize("text", ["=1+1", "@SUM(A1)", "+cmd", "-cmd", "\t=1", "\r=1", "\n=1", "＝1", "－cmd"])
 def test_text_that_would_run_as_a_formula_is_marked_as_text(text: str) -> None:
     assert guarded(text, is_number=False) == "'" + text
 
