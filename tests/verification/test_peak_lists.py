@@ -10,11 +10,12 @@ import pytest
 
 from specflow.conditions import make_conditions_set, parse_dimension
 from specflow.limits import parse_limit
+from specflow.model.correction import Correction
 from specflow.model.verdict import RequirementStatus
 from specflow.parameters import load_dictionary
 from specflow.verification import evaluate
 from tests.builders import a_block, a_quantity, a_requirement, a_snapshot, an_activity, an_item
-from tests.importers.measured.make import SAID, book, one_table, taken
+from tests.importers.measured.make import SAID, book, one_table, questions, taken
 
 HEADERS = ["No", "Frequency (MHz)", "Level (dBm)", "Type"]
 SCAN = [["Scanned range", "30 MHz to 1 GHz"], ["RBW", "100 kHz"], ["Noise floor", "-85 dBm"], []]
@@ -118,3 +119,24 @@ def test_a_line_may_hide_under_a_floor_and_does_not_scale(tmp_path: Path) -> Non
         tmp_path, [*SCAN, HEADERS, [1, 100, -99, "discrete"]], limit="<= -90 dBm", bandwidth_hz=10e3
     )
     assert not proved(found) and not failed(found)
+
+
+def test_a_correction_raises_the_floor_by_the_most_it_adds(tmp_path: Path) -> None:
+    points = ((30e6, 1.0), (500e6, 4.0), (1e9, 3.0))
+    cable = Correction(id="C-1", points=[{"frequency_hz": hertz, "added": added} for hertz, added in points])
+    rows = [["Peak list"], *SCAN, [*HEADERS, "P/F"], [1, 30, -60, "discrete", "PASS"]]
+    stated = {**SAID, "column C": "spurious_emission", "correction": "C-1"}
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows), cable, stated=stated))
+    assert table.document is not None and table.columns is not None and table.document.peaks is not None
+    assert table.document.peaks.scans[0].floor == -81.0
+    peak, floor = table.columns.values.values()
+    assert (peak.low[0], floor.high[1]) == (-59.0, -81.0)
+    assert (
+        table.columns.extra["P/F"].word(1) == ""
+        and table.columns.extra["Level (discrete) as read"].word(1) == ""
+    )
+    short = Correction(
+        id="C-1", points=[{"frequency_hz": 30e6, "added": 1.0}, {"frequency_hz": 900e6, "added": 1.0}]
+    )
+    asked = questions(one_table(book(tmp_path / "b.xlsx", rows), short, stated=stated))
+    assert "C-1 does not reach over the scan from 30 to 1000 MHz" in asked

@@ -20,7 +20,7 @@ from specflow.importers.measured.header_text import header_key
 from specflow.importers.measured.items import is_item
 from specflow.importers.measured.located import LocatedTable
 from specflow.importers.measured.meaning import read_meanings
-from specflow.importers.measured.peak_list import read_peak_list, with_floors
+from specflow.importers.measured.peak_list import corrected_scans, read_peak_list, with_floors
 from specflow.importers.measured.pivot import stack, with_location
 from specflow.importers.measured.rejects import Rejects
 from specflow.importers.measured.result import ColumnReading, MeasuredTable, Question, Role
@@ -263,6 +263,7 @@ def _evidence(
     columns, documents = corrected.columns, corrected.values
     peaks = read_peak_list(work, title)
     if peaks is not None:
+        peaks = corrected_scans(work, peaks, corrected.applied)
         grown = with_floors(work, peaks, columns, documents)
         columns, documents = grown.columns, grown.values
     document = None

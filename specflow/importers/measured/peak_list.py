@@ -9,6 +9,7 @@ fail a limit and proves none, and that is said.
 from __future__ import annotations
 
 import re
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -16,10 +17,12 @@ from numpy.typing import NDArray
 
 from specflow.errors import UnitError
 from specflow.importers.measured.cell_units import brought, to_unit
+from specflow.importers.measured.corrections import at_frequencies
 from specflow.importers.measured.result import Role
 from specflow.importers.measured.scan_text import read_scans
 from specflow.importers.measured.work import TableWork
 from specflow.model.columns import UNSTATED, Columns, TextColumn
+from specflow.model.correction import AppliedCorrection, Correction
 from specflow.model.evidence import EvidenceColumns, SpectrumKind, ValueArrays, ValueColumn
 from specflow.model.source_statement import LIST_COLUMN, PEAK, PeakList, PeakScan
 from specflow.units import parse_unit
@@ -65,6 +68,34 @@ def read_peak_list(work: TableWork, title: str) -> PeakList | None:
     if any(scan.floor is None for scan in scans):
         work.notes.append(f'a scan without its floor: {_PROVES_NOTHING}; --state floor="-85 dBm" says it')
     return PeakList(scans=scans)
+
+
+def corrected_scans(work: TableWork, peaks: PeakList, applied: Sequence[AppliedCorrection]) -> PeakList:
+    """Raise the floors by what was added to the peaks: at most, over each scan. A scan beyond a correction is asked."""
+    scans = list(peaks.scans)
+    for name in dict.fromkeys(one.correction for one in applied):
+        correction = work.context.snapshot.find(Correction, name)
+        for place, scan in enumerate(scans):
+            if correction is None or scan.floor is None:
+                continue
+            most = _most_added(correction, scan)
+            if most is None:
+                what = f"{name} does not reach over the scan from {scan.low / 1e6:g} to {scan.high / 1e6:g} MHz"
+                work.ask("floor", "", what, "state the floor over the range of the correction, or calibrate it further")
+                continue
+            scans[place] = scan.model_copy(update={"floor": scan.floor + most})
+            work.notes.append(f"the floor of {scan.floor:g} {scan.floor_unit} is {most:+g} dB with {name}")
+    return PeakList(scans=tuple(scans))
+
+
+def _most_added(correction: Correction, scan: PeakScan) -> float | None:
+    """The most that a correction adds within a scan, None where it does not cover it."""
+    known = np.array([point.frequency_hz for point in correction.points])
+    if scan.low < known[0] * (1 - 1e-9) or scan.high > known[-1] * (1 + 1e-9):
+        return None
+    inside = known[(known > scan.low) & (known < scan.high)]
+    added, _ = at_frequencies(correction, np.array([scan.low, *inside, scan.high]))
+    return float(added.max())
 
 
 def _scan_words(scan: PeakScan) -> str:
@@ -117,9 +148,9 @@ def _with_floor(
     arrays[value.name] = _floored(arrays.get(value.name), columns, values, floor, added)
     low_source = np.full(added, _row_of(work), np.int32)
     label = TextColumn(np.zeros(added, np.int32), (str(number),))
+    unsaid = TextColumn(np.full(added, UNSTATED, np.int32), ())
     extra = {
-        name: _joined(words, words.take(rows) if name != LIST_COLUMN else label)
-        for name, words in columns.extra.items()
+        name: _joined(words, label if name == LIST_COLUMN else unsaid) for name, words in columns.extra.items()
     }
     grown = EvidenceColumns(
         _conditions(columns.conditions, rows),
