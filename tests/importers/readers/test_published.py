@@ -13,10 +13,18 @@ import openpyxl
 import pytest
 
 from specflow.importers.readers import Grid, OddKind, open_grids, sheet
+from tests.importers.readers.mutating import check_text
 
 DATA = Path(__file__).parents[2] / "data"
 BESIDE = Path(__file__).parents[4] / "shared" / "data" / "real"
 NOTICE = (DATA / "README.md").read_text(encoding="utf-8")
+TEXTS = sorted(
+    path
+    for folder in (DATA, BESIDE)
+    if folder.is_dir()
+    for path in folder.iterdir()
+    if path.suffix.lower() in (".csv", ".dat") and path.name != "standards_limits.csv"
+)
 WORKBOOKS = sorted(DATA.glob("*.xlsx")) + (sorted(BESIDE.glob("*.xlsx")) if BESIDE.is_dir() else [])
 
 
@@ -93,6 +101,11 @@ def test_names_row_longer_than_the_table() -> None:
     assert (len(grid.row(3)), grid.last_row) == (33, 21)
     table = np.array([floats(grid, column, 4) for column in range(2, 34)])
     assert (table.shape, table.max(), table.min()) == ((32, 18), 2.8339, 0.9197)
+
+
+@pytest.mark.parametrize("path", TEXTS, ids=lambda path: path.name)
+def test_every_number_of_a_text_table_stands_so_in_its_line(path: Path) -> None:
+    assert check_text(path.read_bytes(), list(open_grids(path))) >= 28
 
 
 beside = pytest.mark.skipif(not BESIDE.is_dir(), reason="the folder of real data is not beside the checkout")

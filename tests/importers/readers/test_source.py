@@ -79,3 +79,21 @@ def test_file_that_is_written_while_it_is_read_is_refused(
     monkeypatch.setattr(Path, "read_bytes", read_and_append)
     with pytest.raises(FileError, match="changed while it was read"):
         read_source(path)
+
+
+@pytest.mark.skipif(not hasattr(os, "symlink"), reason="this system has no symbolic links")
+def test_links_that_lead_nowhere_or_in_a_ring_are_refused(tmp_path: Path) -> None:
+    (tmp_path / "a.csv").symlink_to(tmp_path / "b.csv")
+    (tmp_path / "b.csv").symlink_to(tmp_path / "a.csv")
+    (tmp_path / "lost.csv").symlink_to(tmp_path / "gone.csv")
+    for name in ("a.csv", "lost.csv"):
+        assert "there is no such file" in refused(lambda name=name: open_grids(tmp_path / name))  # type: ignore[misc]
+
+
+@pytest.mark.skipif(
+    not hasattr(os, "geteuid") or os.geteuid() == 0, reason="the superuser may read everything"
+)
+def test_a_file_that_may_not_be_read_is_refused(tmp_path: Path) -> None:
+    (tmp_path / "a.csv").write_text("f,G\n1,2\n")
+    (tmp_path / "a.csv").chmod(0)
+    assert "check the path and its permissions" in refused(lambda: open_grids(tmp_path / "a.csv"))
