@@ -12,17 +12,12 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from specflow.budgets.allotment import Allotment, BlockParameter, ends_of, key_of, sides_that_matter
+from specflow.budgets.allotment import Allotment, BlockParameter, ends_of, sides_that_matter
 from specflow.budgets.allowed import Corner, Ends, worst_corner
-from specflow.budgets.margins import declared_values
+from specflow.budgets.children import ends_of_children
 from specflow.budgets.probe import Probe, line_name
 from specflow.budgets.spread import bounds, moves
-from specflow.errors import UnitError
-from specflow.limits import LimitContext, evaluate_limit
-from specflow.model.base import code_key
-from specflow.model.columns import Columns
 from specflow.model.requirement import Requirement
-from specflow.units import converter, parse_unit
 
 Floats = NDArray[np.float64]
 _CLOSE = 1e-7
@@ -145,60 +140,3 @@ def _open_sides(probe: Probe, corners: Sequence[Corner]) -> list[str]:
                         f"{line_name(read)} has no {side} limit, and a {way} one worsens {corner.target.name}"
                     )
     return found
-
-
-def ends_of_children(probe: Probe, children: Sequence[Requirement]) -> tuple[list[Ends | None], list[str]]:
-    """Return what requirements on blocks allow every line (n,), in its unit, at the block's own conditions."""
-    ends: list[Ends | None] = []
-    notes: list[str] = []
-    for read in probe.chain.lines:
-        own: Ends | None = None
-        for child in children:
-            if (code_key(child.block), code_key(child.quantity.parameter)) != key_of(read):
-                continue
-            try:
-                found = child_ends(probe, read.row, child, read.line.unit)
-            except UnitError as error:
-                notes.append(f"{child.id} cannot be compared with {line_name(read)}: {error.message}")
-                continue
-            own = found if own is None else (np.maximum(own[0], found[0]), np.minimum(own[1], found[1]))
-        ends.append(own)
-    return ends, notes
-
-
-def _terms_of(probe: Probe, row: int, child: Requirement) -> Columns:
-    """Return the conditions in which a limit is read; names that these do not have are those of the other side."""
-    own, system, points = probe.chain.own[row], probe.chain.required.columns, probe.chain.required.points
-    is_shared = points is not None and code_key(child.conditions or "") == code_key(points.conditions.id)
-    first, second = (system, own) if is_shared else (own, system)
-    taken = set(first.names)
-    return Columns(
-        own.size,
-        {**{name: one for name, one in second.numeric.items() if name not in taken}, **first.numeric},
-        {**{name: one for name, one in second.text.items() if name not in taken}, **first.text},
-        {**{name: unit for name, unit in second.units.items() if name not in taken}, **first.units},
-    )
-
-
-def child_ends(probe: Probe, row: int, child: Requirement, unit: str) -> Ends:
-    """Return the bounds (n,) that a requirement sets on the block at one position, in ``unit``, ±inf where open.
-
-    A child with the conditions set of the budget speaks in its terms, one with a set of its own in the block's own.
-    Where the limit is not known or asks for nothing it bounds nothing.
-    """
-    columns = _terms_of(probe, row, child)
-    context = LimitContext(columns, declared_values(probe.snapshot), columns.size)
-    found = evaluate_limit(child.limit, context).spread(columns.size)
-    parameter = probe.dictionary.get(child.quantity.parameter)
-    step = converter(
-        parse_unit(found.unit or unit),
-        parse_unit(unit),
-        log_factor=parameter.log_factor if parameter is not None else None,
-    )
-    sides = []
-    for values, nothing in ((found.lower, -np.inf), (found.upper, np.inf)):
-        known = np.full(columns.size, nothing) if values is None else np.array(values)
-        held = found.applies & ~found.unknown & np.isfinite(known)
-        sides.append(np.where(held, step(np.where(held, known, 1.0)), nothing))
-    low, high = (np.broadcast_to(one, (probe.size,)) for one in sides)
-    return low, high

@@ -12,7 +12,8 @@ from numpy.typing import NDArray
 from specflow.budgets.allotment import Allotment, joined, key_of, rounded_safely, rounded_widely
 from specflow.budgets.allowed import Ends, worst_corner
 from specflow.budgets.chain import ReadLine
-from specflow.budgets.closure import Closure, ends_of_children, test_ends, tolerance_ends
+from specflow.budgets.children import ends_of_children
+from specflow.budgets.closure import Closure, test_ends, tolerance_ends
 from specflow.budgets.knowledge import KnownLine, Rank
 from specflow.budgets.probe import Probe, line_name
 from specflow.budgets.spread import moves

@@ -11,7 +11,8 @@ import numpy as np
 
 from specflow.budgets.allotment import Allotment, BlockParameter, key_of
 from specflow.budgets.apportion import apportion
-from specflow.budgets.closure import Closure, child_ends, closure_test
+from specflow.budgets.children import child_ends
+from specflow.budgets.closure import Closure, closure_test
 from specflow.budgets.effort import Strain, least_effort
 from specflow.budgets.following import NoLonger, no_longer_following
 from specflow.budgets.probe import Probe
@@ -29,7 +30,7 @@ from specflow.model.snapshot import Snapshot
 from specflow.parameters import Dictionary
 from specflow.store import ProjectStore
 from specflow.workflows.allocated_limit import limit_text_of
-from specflow.workflows.allocated_quantity import quantity_of
+from specflow.workflows.allocated_quantity import quantity_of, sideband_words
 from specflow.workflows.evaluate_project import project_dictionary
 from specflow.workflows.show_budget import budget_named
 
@@ -388,7 +389,7 @@ def _new_child(one: Allotment, parents: Sequence[str], probe: Probe, title: str)
     quantity = quantity_of(one.key, probe, block)
     return Requirement(
         id=_free_id(snapshot, f"{block.id}-{one.parameter.upper().replace('_', '-')}"),
-        title=f"{title} of {block.name}",
+        title=f"{title}{sideband_words(one.key, probe)} of {block.name}",
         source=Source(document=f"Budget {budget.id}"),
         parents=tuple(parents),
         tier=block.tier,

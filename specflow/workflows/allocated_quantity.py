@@ -33,6 +33,14 @@ def quantity_of(key: BlockParameter, probe: Probe, block: Block) -> QuantityIden
     )
 
 
+def sideband_words(key: BlockParameter, probe: Probe) -> str:
+    """Say the sideband of a mixer's noise figure for a title; "" where its lines state none."""
+    stated = {read.line.sideband for read in probe.chain.lines if key_of(read) == key}
+    if stated & {"DSB", "both"}:
+        return " (double sideband)"
+    return " (single sideband)" if "SSB" in stated else ""
+
+
 def _one(stated: list[str]) -> str:
     """Return what is stated, "" where several lines of a block state different things."""
     named = {code_key(name): name for name in stated if name}

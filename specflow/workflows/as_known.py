@@ -7,6 +7,7 @@ from dataclasses import dataclass
 from datetime import date
 
 from specflow.budgets.as_known import AsKnown, as_known
+from specflow.budgets.children import equivalents
 from specflow.budgets.probe import Probe
 from specflow.budgets.reallocation import Reallocation, reallocate
 from specflow.errors import DocumentError
@@ -92,7 +93,7 @@ def children_of_budget(snapshot: Snapshot, budget: Budget) -> list[Requirement]:
         if link.budget is not None and code_key(link.budget) == code_key(budget.id)
     ]
     found = {code_key(link.child): snapshot.find(Requirement, link.child) for link in links}
-    figures = {(code_key(line.block), code_key(line.parameter)) for line in budget.lines}
+    figures = {(code_key(line.block), name) for line in budget.lines for name in equivalents(line.parameter)}
     for parent in budget.requirements:
         for one in snapshot.children_of.get(code_key(parent), ()):
             if (code_key(one.block), code_key(one.quantity.parameter)) in figures:

@@ -304,8 +304,14 @@ def _row(row: SheetRow, group: _Lines, position: str, block: str, intake: Intake
         )
     _say(row, place, intake)
     line = _line(row, order, code, group, intake)
-    if line is not None:
-        group.lines.append(line)
+    if line is None:
+        return
+    if any(
+        one.position == order and code_key(one.parameter) == code_key(line.parameter) for one in group.lines
+    ):
+        row.fault("parameter", f"{line.place} is given above", "keep one of the two rows")
+        return
+    group.lines.append(line)
 
 
 def _order(row: SheetRow, text: str) -> int | None:
