@@ -74,7 +74,8 @@ def column_numbers(work: TableWork, meaning: ColumnMeaning) -> Numbers:
 
 def column_name(meaning: ColumnMeaning, taken: Collection[str] = ()) -> str:
     """The name of a column within its table: its header without the unit."""
-    name = meaning.parts.name or meaning.header.text
+    whole = meaning.role is Role.STATED_VERDICT  # P/F is no P in farads
+    name = meaning.header.text if whole else meaning.parts.name or meaning.header.text
     return name if name not in taken else f"{name} ({meaning.letter})"
 
 
