@@ -17,6 +17,7 @@ from typing import Any
 
 from specflow.errors import ConflictError, FileError, SpecflowError, StoreError
 from specflow.model.base import code_key
+from specflow.model.bench_sheet import NOTHING_FILLED_IN
 from specflow.model.evidence import EvidenceFile, EvidenceTable
 from specflow.store import ProjectStore, open_project
 from specflow.workflows.attach import (
@@ -179,6 +180,10 @@ def _attach_once(store: ProjectStore, path: Path, job: FolderJob, expected: str)
         )
     job.met.update(table.layout_key for table in preview.measurements.tables)
     base = FileOutcome(path, Outcome.UNCHANGED, sha256, tuple(preview.known.values()))
+    if not preview.measurements.tables and any(
+        one.rule == NOTHING_FILLED_IN for one in preview.measurements.findings
+    ):
+        return replace(base, words="a test sheet that is not filled in")
     keeps = job.decision.keep or preview.snapshot.project.policy.keep_copies
     if _has_nothing_new(preview, job.decision) and not keeps:
         return replace(base, words=_known_words(preview))

@@ -58,6 +58,8 @@ def test_what_is_refused(command: Command, project: Path, tmp_path: Path) -> Non
 def test_it_comes_back_in_a_folder(command: Command, project: Path, tmp_path: Path) -> None:
     (tmp_path / "back").mkdir()
     command("testsheet", "back/bench.xlsx", "-b", "PA", *AS_OF)
+    done = command("attach", "back", "--yes")
+    assert done.code == ExitCode.CLEAN and "a test sheet that is not filled in" in done.out
     first = json.loads(command("testsheet", "x.xlsx", "-b", "PA", "--json", *AS_OF).out)["points"]
     path = tmp_path / "back" / "bench.xlsx"
     workbook = openpyxl.load_workbook(path)
