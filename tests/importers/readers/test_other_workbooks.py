@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import io
+import shutil
+import subprocess
 import zipfile
 from datetime import date, datetime, time, timedelta
 from pathlib import Path
@@ -318,3 +320,39 @@ def test_tables_of_a_web_page(tmp_path: Path) -> None:
     assert "the web page is damaged" in refused(lambda: open_grids(tmp_path / "d.html"))
     (tmp_path / "c.html").write_text('<table><tr><td rowspan="16000" colspan="16000">1</td></tr></table>')
     assert "more than 2,000,000 cells" in refused(lambda: open_grids(tmp_path / "c.html"))
+
+
+@pytest.mark.desktop
+@pytest.mark.parametrize("kind", ["ods", "xls"])
+def test_published_workbooks_converted_by_an_office_program(tmp_path: Path, kind: str) -> None:
+    office = shutil.which("libreoffice") or shutil.which("soffice")
+    if office is None:
+        pytest.skip("LibreOffice is not installed")
+    originals = sorted(DATA.parent.glob("*.xlsx"))
+    profile = f"-env:UserInstallation=file://{tmp_path}/profile"
+    command = [
+        office,
+        profile,
+        "--headless",
+        "--convert-to",
+        kind,
+        "--outdir",
+        str(tmp_path),
+        *map(str, originals),
+    ]
+    subprocess.run(command, check=True, capture_output=True, timeout=180)
+    compared = 0
+    for original in originals:
+        grids = {grid.name: grid for grid in open_grids(tmp_path / f"{original.stem}.{kind}")}
+        for sheet in openpyxl.load_workbook(original, data_only=True).worksheets:
+            grid = grids[sheet.title]
+            for cell in (cell for cells in sheet.iter_rows() for cell in cells):
+                if isinstance(cell.value, float | int) and not isinstance(cell.value, bool):
+                    assert grid.value(cell.row, cell.column) == pytest.approx(cell.value, rel=1e-12), (
+                        cell.coordinate
+                    )
+                    odd = grid.odd.at(cell.row, cell.column)
+                    assert ("%" in cell.number_format) == (odd is not None and odd.kind is OddKind.PERCENT)
+                    compared += 1
+            assert sorted(map(str, grid.merged)) == sorted(map(str, sheet.merged_cells.ranges))
+    assert compared > 200
