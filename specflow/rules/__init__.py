@@ -87,6 +87,7 @@ RULES: tuple[Rule, ...] = (
     Rule.of(evidence.conditions_mismatch, "requirement", _WARNING),
     Rule.of(evidence.wrong_requirement_named, "requirement", _WARNING),
     Rule.of(sources.stated_verdict_differs, "requirement", _WARNING),
+    Rule.of(sources.stated_fail_unjudged, "evidence_table", _WARNING),
     Rule.of(sources.stated_limit_differs, "requirement", _WARNING),
     Rule.of(sources.values_without_meaning, "requirement", _WARNING),
     Rule.of(sources.outdated_correction, "evidence_table", _WARNING),

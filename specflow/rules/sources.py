@@ -8,6 +8,7 @@ from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
 
 from specflow.errors import UnitError
+from specflow.model.base import code_key
 from specflow.model.correction import Correction
 from specflow.model.evidence import EvidenceTable
 from specflow.model.requirement import Requirement
@@ -89,6 +90,26 @@ def stated_limit_differs(facts: Facts) -> Iterator[Found]:
         yield Found(requirement.id, message, origin=facts.origin(told.first), related=tuple(told.tables))
 
 
+def stated_fail_unjudged(facts: Facts) -> Iterator[Found]:
+    """A source calls readings failed of which none governs a required point.
+
+    Why: somebody saw a fail there, and nothing of ours says a word about it.
+    Fails: the sheet says FAIL at 31 GHz, where nothing is required.
+    Passes: a reading that the sheet calls failed governs a point, whatever we find there.
+    Do: look whether the condition ought to be required, or whether the reading was matched wrongly.
+    """
+    governing = _governing_rows(facts)
+    for table in facts.snapshot.tables:
+        failed = sorted(
+            {row for said in table.stated if said.kind == "verdict" for row in _failed(facts, table, said)}
+        )
+        if failed and not governing.get(code_key(table.id), set()) & set(failed):
+            rows = facts.columns(table.id).source_rows
+            message = f"the source calls {counted(len(failed), 'reading')} failed, and none governs a required point"
+            origin = facts.place(table).model_copy(update={"row": int(rows[failed[0]])})
+            yield Found(table.id, message, origin=origin, related=(table.file,))
+
+
 def values_without_meaning(facts: Facts) -> Iterator[Found]:
     """Readings have no meaning in the unit of the limit, and were not judged.
 
@@ -120,6 +141,24 @@ def outdated_correction(facts: Facts) -> Iterator[Found]:
                 now = "is no longer there" if known is None else f"is at revision {known.revision} now"
                 message = f"{name} was added at revision {applied.revision}, and {now}"
                 yield Found(table.id, message, origin=facts.place(table), related=(table.file, name))
+
+
+def _governing_rows(facts: Facts) -> dict[str, set[int]]:
+    """Positions of the rows that govern a point of any requirement, by table key."""
+    found: dict[str, set[int]] = {}
+    for _, results in facts.all_items():
+        for place, row in zip(results.table.tolist(), results.row.tolist(), strict=True):
+            if place >= 0:
+                found.setdefault(code_key(results.tables[place]), set()).add(int(row))
+    return found
+
+
+def _failed(facts: Facts, table: EvidenceTable, said: StatedColumn) -> list[int]:
+    words = facts.columns(table.id).extra.get(said.name)
+    if words is None:
+        return []
+    failed = {code for code, label in enumerate(words.labels) if _plain(label) in _FAILED}
+    return [row for row, code in enumerate(words.codes.tolist()) if code in failed]
 
 
 def _compared(facts: Facts, kind: str) -> Iterator[tuple[Requirement, Told]]:
@@ -181,12 +220,16 @@ def _differs(
 
 
 def _other_verdict(text: str, ours: Verdict) -> str:
-    plain = re.sub(r"[\s\-_]+", "", text.casefold())
+    plain = _plain(text)
     if plain in _PASSED and ours in FAILS:
         return f"the source says {text!r}, we find a fail"
     if plain in _FAILED and ours in (Verdict.PASS, Verdict.CONDITIONAL_PASS):
         return f"the source says {text!r}, we find a pass"
     return ""
+
+
+def _plain(text: str) -> str:
+    return re.sub(r"[\s\-_]+", "", text.casefold())
 
 
 def _other_limit(text: str, said: StatedColumn, unit: str, ends: Mapping[str, float]) -> str:
