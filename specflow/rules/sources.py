@@ -10,7 +10,7 @@ from dataclasses import dataclass, field
 from specflow.errors import UnitError
 from specflow.model.base import code_key
 from specflow.model.correction import Correction
-from specflow.model.evidence import EvidenceTable
+from specflow.model.evidence import EvidenceTable, Supersession, Withdrawal
 from specflow.model.requirement import Requirement
 from specflow.model.source_statement import StatedColumn
 from specflow.model.verdict import PointResults, RecordRef, Verdict
@@ -98,8 +98,10 @@ def stated_fail_unjudged(facts: Facts) -> Iterator[Found]:
     Passes: a reading that the sheet calls failed governs a point, whatever we find there.
     Do: look whether the condition ought to be required, or whether the reading was matched wrongly.
     """
-    governing = _governing_rows(facts)
+    governing, gone = _governing_rows(facts), _gone(facts)
     for table in facts.snapshot.tables:
+        if code_key(table.id) in gone:
+            continue
         failed = sorted(
             {row for said in table.stated if said.kind == "verdict" for row in _failed(facts, table, said)}
         )
@@ -141,6 +143,12 @@ def outdated_correction(facts: Facts) -> Iterator[Found]:
                 now = "is no longer there" if known is None else f"is at revision {known.revision} now"
                 message = f"{name} was added at revision {applied.revision}, and {now}"
                 yield Found(table.id, message, origin=facts.place(table), related=(table.file, name))
+
+
+def _gone(facts: Facts) -> set[str]:
+    """The keys of tables that were replaced or withdrawn as a whole."""
+    replaced = {code_key(one.earlier) for one in facts.snapshot.all(Supersession) if one.rows is None}
+    return replaced | {code_key(one.table) for one in facts.snapshot.all(Withdrawal) if one.rows is None}
 
 
 def _governing_rows(facts: Facts) -> dict[str, set[int]]:
