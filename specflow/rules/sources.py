@@ -136,7 +136,8 @@ def outdated_correction(facts: Facts) -> Iterator[Found]:
     Passes: every correction is in the revision that was added.
     Do: attach the file again with the correction as it is now, superseding the table; or record why it does not matter.
     """
-    for table in facts.snapshot.tables:
+    gone = _gone(facts)
+    for table in (one for one in facts.snapshot.tables if one.applied and code_key(one.id) not in gone):
         for name, applied in {one.correction: one for one in table.applied}.items():
             known = facts.snapshot.find(Correction, name)
             if known is None or known.revision != applied.revision:
