@@ -11,7 +11,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from specflow.derive.sphere import _clenshaw_curtis
+from specflow.derive.sphere_grid import clenshaw_curtis
 from specflow.errors import CalculationError
 from specflow.statistics.sphere import unique_directions
 from tests.derive.deriving import law_on, value_of
@@ -84,7 +84,7 @@ def test_clenshaw_curtis_is_exact_for_polynomials_of_the_cosine() -> None:
         places = np.cos(np.pi * np.arange(n + 1) / n)
         nodes, weights = np.polynomial.legendre.leggauss(n)
         for k in range(n + 1):
-            assert 2 * np.dot(_clenshaw_curtis(n), places**k) == pytest.approx(
+            assert 2 * np.dot(clenshaw_curtis(n), places**k) == pytest.approx(
                 np.dot(weights, nodes**k), abs=1e-12
             )
 
