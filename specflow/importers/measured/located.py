@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 from specflow.importers.measured.area import without
 from specflow.importers.measured.context import Context
@@ -147,9 +147,11 @@ class _Locator:
         if mapping.header_rows > 1 and not mapping.area:
             rows = mapping.header_rows
             table = cut_table(table.grid, table.top, table.header_row, rows, self._context.recognises)
-        facts = (*facts_of_cells(self._grid, table, mapping), *facts)
+        from_cells, doubts = facts_of_cells(self._grid, table, mapping)
+        facts = (*from_cells, *facts)
         self._number += 1
         for part, read_as in parts_of(table, mapping, self._context):
+            part = replace(part, doubts=(*part.doubts, *doubts))
             self.found.tables.append(
                 LocatedTable(
                     part,

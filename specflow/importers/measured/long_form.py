@@ -82,9 +82,7 @@ def long_parts(
         if any(fact.row in rows for fact in common):
             continue
         part = _part(table, long, name, unit, rows, (names, values, units))
-        parts.append(
-            (replace(part, facts=(*part.facts, *common)), _settled(read_as, long, part, values, unit))
-        )
+        parts.append((replace(part, facts=(*part.facts, *common)), _settled(read_as, long, part, values)))
     if wanted and not parts:
         doubts.append(_no_rows(table, groups, names))
     if parts:
@@ -194,14 +192,14 @@ def _part(
 
 
 def _settled(
-    read_as: LayoutMapping, long: LongMapping, part: FoundTable, values: HeaderCell, unit: str
+    read_as: LayoutMapping, long: LongMapping, part: FoundTable, values: HeaderCell
 ) -> LayoutMapping:
     """The mapping of one part: what the person said the name means."""
     name = next(header.text for header in part.headers if header.column == values.column)
     meant = next((key for text, key in long.parameters.items() if header_key(text) == header_key(name)), "")
     if not meant:
         return read_as
-    entry = ColumnMapping(header=name, column=values.letter, role="value", parameter=meant, unit=unit)
+    entry = ColumnMapping(header=name, column=values.letter, role="value", parameter=meant)
     return replace(read_as, columns=(entry, *read_as.columns))
 
 

@@ -5,12 +5,13 @@ from __future__ import annotations
 import re
 from collections.abc import Iterable
 
-from specflow.conditions import find_dimension, known_dimension
+from specflow.conditions import Comparison, find_dimension, known_dimension
 from specflow.errors import UnitError
 from specflow.importers.measured.area import read_cell
 from specflow.importers.measured.facts import Fact, value_text
 from specflow.importers.measured.header_text import known_unit, read_header
 from specflow.importers.measured.mapping_parts import LayoutMapping
+from specflow.importers.measured.result import Question
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.readers import Grid, is_blank, looks_numeric
 from specflow.units import compatible, parse_unit
@@ -31,25 +32,30 @@ def stated_here(mapping: LayoutMapping) -> dict[str, str]:
     return {key: text for key, text in mapping.stated.items() if not is_reference(text)}
 
 
-def facts_of_cells(grid: Grid, table: FoundTable, mapping: LayoutMapping) -> tuple[Fact, ...]:
-    """What a mapping takes from cells, as facts; a cell that says nothing gives the text "(nothing)"."""
-    facts = []
+def facts_of_cells(
+    grid: Grid, table: FoundTable, mapping: LayoutMapping
+) -> tuple[tuple[Fact, ...], tuple[Question, ...]]:
+    """What a mapping takes from cells, as facts; a cell that does not say it is a question."""
+    facts, doubts = [], []
     for key, text in mapping.stated.items():
         found = _REFERENCE.match(text.strip())
         if found is None:
             continue
         place = read_cell(found["cell"]) if found["cell"] else _above(table)
-        if place is None:
-            facts.append(Fact(key, "(nothing stands above)", table.place, table.header_row))
-            continue
-        row, column = place
         source = grid if found["cell"] else table.grid
-        facts.append(
-            Fact(
-                key, _text_at(source, row, column, key, found["unit"] or ""), source.address(row, column), row
-            )
-        )
-    return tuple(facts)
+        said = "" if place is None else _text_at(source, *place, key, found["unit"] or "")
+        if place is None or not said or (_is_numeric(key) and not re.search(r"[0-9]", said)):
+            where = source.address(*place) if place else table.place
+            what = f"the mapping takes {key} from {text!r}; {said or 'nothing'} is written there"
+            doubts.append(Question(key, where, what, f"correct {key} = ... of [table.stated] in the mapping"))
+            continue
+        facts.append(Fact(key, said, source.address(*place), place[0]))
+    return tuple(facts), tuple(doubts)
+
+
+def _is_numeric(key: str) -> bool:
+    dimension = known_dimension(key) or find_dimension(key)
+    return dimension is not None and dimension.comparison is not Comparison.TEXT
 
 
 def _above(table: FoundTable) -> tuple[int, int] | None:
@@ -65,7 +71,7 @@ def _above(table: FoundTable) -> tuple[int, int] | None:
 def _text_at(grid: Grid, row: int, column: int, key: str, unit: str) -> str:
     value = grid.value(row, column)
     if is_blank(value):
-        return "(nothing is written there)"
+        return ""
     text = value_text(grid, row, column, value, "")
     if looks_numeric(text):
         return f"{text} {unit or _unit_beside(grid, row, column)}".strip()

@@ -304,11 +304,19 @@ class _Body:
                 action = self._row_of_words(place, int(filled[place]), int(beside[place]))
             if action == "ends":
                 end = place
+                self._leave_titles(data, written, place)
                 break
             data[place] = action == "data"
         data[end:] = False
         stop = self._without_rest(data, written, filled, numeric, end)
         return data, self._first + stop
+
+    def _leave_titles(self, data: Flags, written: Flags, place: int) -> None:
+        """Leave the lines of words directly above the headers of the next table to that."""
+        for above in range(place - 1, -1, -1):
+            if written[above] and not self._is_title(self._first + above):
+                return
+            data[above] = False
 
     def _without_rest(self, data: Flags, written: Flags, filled: Rows, numeric: Rows, end: int) -> int:
         """Leave out, below a blank row at the end, blocks of rows that fill less than half of the usual cells.
@@ -364,7 +372,16 @@ class _Body:
         above = row - 1
         while above > self._first and all(is_blank(value) for value in self._grid.row(above)):
             above -= 1
-        return any(remark.row == above and remark.text for remark in self._remarks)
+        return self._is_title(above)
+
+    def _is_title(self, row: int) -> bool:
+        """Whether a row is a remark, or words that fill fewer cells than there are headers, or a key with a colon."""
+        if any(remark.row == row and remark.text for remark in self._remarks):
+            return True
+        filled = [value for value in self._grid.row(row) if not is_blank(value)]
+        if not filled or any(not isinstance(value, str) or is_reading(value) for value in filled):
+            return False
+        return len(filled) < len(self._named) or any(str(value).rstrip().endswith(":") for value in filled)
 
     def _repeats(self, texts: dict[int, str]) -> bool:
         return {header_key(text) for text in texts.values()} <= {
