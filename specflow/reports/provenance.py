@@ -40,7 +40,8 @@ def received_step(table: EvidenceTable, snapshot: Snapshot) -> TrailStep | None:
 
 
 def reading_steps(table: EvidenceTable, snapshot: Snapshot, depth: int) -> Iterator[TrailStep]:
-    """Give how a table was read: by which importer and mapping, from which cells, with what stated."""
+    """Give how a table came to be: who measured with what, and by which importer and mapping it was read from where."""
+    yield TrailStep(depth=depth, kind="measured by", id=table.id, text=_circumstances(table))
     file = snapshot.find(EvidenceFile, table.file)
     how = table.how_read
     importer = how.importer or (file.importer_version if file else "")
@@ -76,16 +77,45 @@ def _condition_words(condition: ConditionColumn) -> str:
     if condition.column is None:
         return f"{what}, {condition.stated_by}"
     source = f" (unit from {condition.unit_from})" if condition.unit_from and condition.unit else ""
-    return f"column {column_letters(condition.column)}: {what}{source}"
+    return f"{_place(condition.column, condition.header)}: {what}{source}"
 
 
 def _column_words(column: ValueColumn) -> str:
+    quantity = column.quantity
+    identity = [quantity.parameter, f"at {quantity.plane}" if quantity.plane else "", quantity.statistic]
+    identity += [quantity.polarisation, f"per {quantity.bandwidth_hz:g} Hz" if quantity.bandwidth_hz else ""]
+    what = ", ".join(filter(None, identity))
     parts = [
-        f"column {column_letters(column.column)}: {column.quantity.parameter} in {column.unit} "
-        f"(unit from {column.unit_from})"
+        f"{_place(column.column, column.header)}: {what} in {column.unit} (unit from {column.unit_from})"
     ]
     parts += column.conversions or ("no conversion",)
     parts += (
         [f"uncertainty from {column.uncertainty_from}"] if column.uncertainty_from else ["no uncertainty"]
     )
     return "; ".join(parts)
+
+
+def _place(column: int, header: str) -> str:
+    """The column by its letter, and by its header where it has one."""
+    words = " ".join(header.split())
+    return f"column {column_letters(column)}" + (f" ({words})" if words else "")
+
+
+def _circumstances(table: EvidenceTable) -> str:
+    """Who measured when, on which set-up, by which procedure and with what; or with which model it was computed."""
+    procedure = f"{table.procedure} {table.procedure_revision}".strip()
+    model = f"{table.simulation_model} {table.simulation_version}".strip()
+    instruments = [
+        one.asset + (f" (calibrated until {one.calibration_due})" if one.calibration_due else "")
+        for one in table.equipment
+    ]
+    facts = [
+        f"{table.method.value}, {table.stage.value}",
+        f"by {table.performer}" if table.performer else "",
+        f"on {table.performed_on}" if table.performed_on else "",
+        f"set-up {table.set_up}" if table.set_up else "",
+        f"procedure {procedure}" if procedure else "",
+        f"with {', '.join(instruments)}" if instruments else "",
+        f"model {model}" if model else "",
+    ]
+    return ", ".join(filter(None, facts))
