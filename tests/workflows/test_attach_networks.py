@@ -183,7 +183,10 @@ def test_a_network_is_verified_against_its_file(store: ProjectStore, tmp_path: P
     path.write_text("# GHz S RI R 50\n" + rows.format(f=1) + rows.format(f=2))
     attached(store, path, block="FIL", item="FIL-7", derive="none")
     origin = OriginFinder(store.load()).origin(RecordRef("EV-1", "S32 real", 1))
-    assert origin is not None and (origin.row, origin.column) == (7, 3)  # the third line of the second frequency
+    assert origin is not None and (origin.row, origin.column) == (
+        7,
+        3,
+    )  # the third line of the second frequency
     asks_more = a_requirement(
         "R-AI", block="FIL", quantity=a_quantity("amplitude_imbalance"), limit=at_most(0.5), conditions="PASS"
     )
