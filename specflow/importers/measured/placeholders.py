@@ -60,6 +60,9 @@ def only_mark(table: FoundTable, column: int) -> str:
     Words for nothing count ("---"); an overload is a reading that was lost. A single row says too little.
     """
     cells = table.cells(column)
+    ends = cells.numbers_at(table.rows[[0, -1]]) if len(table.rows) else cells.numbers[:0]
+    if np.isfinite(ends).all() and (ends != ends[:1]).any():
+        return ""  # two readings are enough to tell; a column may have a million
     numbers = cells.numbers_at(table.rows)
     there = cells.filled[table.rows - cells.first]
     if np.count_nonzero(there) < 2:

@@ -48,9 +48,9 @@ def read_large_text(source: Source, find_layout: FindLayout) -> Grid | None:
 def _is_plain(content: bytes, head: bytes) -> bool:
     if content.startswith((b"\xff\xfe", b"\xfe\xff")) or b"\0" in content or _UTF8_MARK in content:
         return False
-    if b"#" in content and _COUNTED.search(content):
+    if content.find(b'"', len(head)) >= 0 or (b"#" in content and _COUNTED.search(content)):
         return False
-    return b'"' not in content[len(head) :] and content.count(b"\r") == content.count(b"\r\n")
+    return b"\r" not in content or content.count(b"\r") == content.count(b"\r\n")
 
 
 class _NotPlain(Exception):
@@ -134,10 +134,10 @@ class _Reading:
         return TextLines("\n".join(lines), lines, self._first)
 
     def _check_size(self) -> None:
-        parts = self._content.count(self._layout.delimiter.encode())
-        if parts + len(self._starts) > MAX_FIELDS:
+        fields = len(self._starts) * self._layout.width
+        if fields > MAX_FIELDS:
             raise FileError(
-                f"the file has about {parts + len(self._starts):,} fields, more than {MAX_FIELDS:,}",
+                f"the file has about {fields:,} fields, more than {MAX_FIELDS:,}",
                 where=self._source.name,
                 hint="split it",
             )
