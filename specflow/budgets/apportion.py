@@ -29,13 +29,11 @@ from specflow.budgets.bracketing import edge
 from specflow.budgets.chain import Overrides
 from specflow.budgets.closure import Closure, closure_test
 from specflow.budgets.contribution import Contribution, contribution
-from specflow.budgets.figures import Figures
 from specflow.budgets.forms import LOSS
-from specflow.budgets.growth import Growth, one_number
+from specflow.budgets.growth import Growth, fronts_of, one_number
 from specflow.budgets.inverse_figures import image_factor
 from specflow.budgets.plain_shares import share_plainly
 from specflow.budgets.probe import Probe, Target
-from specflow.calculators.decibel import gain_before
 from specflow.errors import CalculationError, InfeasibleError
 from specflow.model.base import code_key
 from specflow.model.budget import Budget
@@ -214,12 +212,13 @@ def _parts(
         return {number: np.ones(size) for number in numbers}
     estimate = {number: probe.chain.lines[number].values for number in numbers}
     figures = probe.figures({**start, **estimate})
+    fronts = fronts_of(figures, law.figure)
     parts = {}
     for number in numbers:
         read = probe.chain.lines[number]
-        front = _front(figures, read.row)
+        front = np.ones(1) if fronts is None else fronts[read.row]
         # Of a mixer its own noise alone: what comes of the image is made in front of it.
-        own = law.of(figures.stages[law.figure][read.row], front) - image_factor(probe.chain, read) / front
+        own = law.of(figures.own[law.figure][read.row], front) - image_factor(probe.chain, read) / front
         parts[number] = np.broadcast_to(own, (size,))
     if np.any(sum(parts.values()) == 0):
         raise CalculationError(
@@ -228,12 +227,6 @@ def _parts(
             hint="estimate one that does, or share equally",
         )
     return parts
-
-
-def _front(figures: Figures, row: int) -> Floats:
-    """Return the linear gain in front of a position; 1 in a sum, which has no chain."""
-    gain = figures.arrays.get("gain")
-    return np.ones(1) if gain is None else np.asarray(gain_before(gain)[row])
 
 
 def _scale(probe: Probe, target: Target, growth: Growth, start: dict[int, Floats]) -> Floats:

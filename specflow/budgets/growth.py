@@ -10,9 +10,11 @@ from numpy.typing import NDArray
 
 from specflow.budgets.bracketing import edge
 from specflow.budgets.contribution import Contribution
+from specflow.budgets.figures import Figures
 from specflow.budgets.inverse_figures import figure_of_line, image_factor, line_value
+from specflow.budgets.paths import groups_of, last_row
 from specflow.budgets.probe import Probe, Target
-from specflow.calculators.decibel import gain_before
+from specflow.calculators.decibel import gain_before, ratio, total
 
 Floats = NDArray[np.float64]
 Values = Mapping[int, Floats]
@@ -38,8 +40,8 @@ class Growth:
     @classmethod
     def of(cls, probe: Probe, law: Contribution, start: Values, parts: Values) -> Growth:
         """Return the growth from what the other lines stand at."""
-        gains = probe.figures(start).arrays.get("gain")
-        return cls(probe, law, parts, gains, None if gains is None else gain_before(gains))
+        figures = probe.figures(start)
+        return cls(probe, law, parts, figures.own.get("gain"), fronts_of(figures, law.figure))
 
     def values(self, scale: Floats) -> dict[int, Floats]:
         """Return the values of the shared lines for a scale (n,) in decades."""
@@ -55,6 +57,32 @@ class Growth:
             figure = figure_of_line(self.probe.chain, read, at_position, gain)
             found[number] = line_value(read, figure, self.probe.dictionary)
         return found
+
+
+def fronts_of(figures: Figures, figure: str) -> Floats | None:
+    """Return the linear gain (positions, ...) by which a figure of each position counts less (noise) or more
+    (distortion) in the sum of the chain; None in a sum, which has no chain.
+
+    It is the gain in front; in parallel paths what ``paths`` makes of it: of K paths of gains g, together G, noise
+    counts by g_k/(K·G), third order by √g_k/(K²·√G), second by g_k/(K³·G).
+    """
+    own = figures.own.get("gain")
+    if own is None:
+        return None
+    fronts = np.array(gain_before(figures.stages["gain"]))
+    for group in groups_of(figures.chain.positions):
+        count, whole = len(group), ratio(figures.stages["gain"][last_row(group)])
+        for rows in group:
+            inside, through = gain_before(own[rows]), ratio(total(own[rows]))
+            match figure:
+                case "noise_figure":
+                    share = count * whole / through
+                case "iip2":
+                    share = through / (count**3 * whole)
+                case _:
+                    share = np.sqrt(through / whole) / count**2
+            fronts[rows] = fronts[last_row(group)] * inside * share
+    return fronts
 
 
 def one_number(
@@ -128,6 +156,6 @@ def _from_values(probe: Probe, law: Contribution, start: Values, base: Values) -
     parts = {}
     for number in base:
         read = probe.chain.lines[number]
-        own = law.of(figures.stages[law.figure][read.row], np.ones(1))
+        own = law.of(figures.own[law.figure][read.row], np.ones(1))
         parts[number] = own - image_factor(probe.chain, read)
-    return Growth(probe, law, parts, figures.arrays.get("gain"), None)
+    return Growth(probe, law, parts, figures.own.get("gain"), None)

@@ -287,3 +287,67 @@ def test_one_number_for_all_conditions_asks_for_nothing_in_vain(way: Any) -> Non
         assert own == pytest.approx(behind / hot, rel=0.01)
     else:
         assert own / (10**0.21 - 1) == pytest.approx(behind / (10**0.8 - 1), rel=0.01)
+
+
+@pytest.mark.parametrize("way", ["equal", "proportional"])
+def test_parallel_paths_share_by_what_they_add_to_the_chain(way: Any) -> None:
+    """Two unlike paths of 15 and 12 dB in front of a third block: F - 1 = Σ (F_k - 1)·g_k/(2·G) + (F_C - 1)/G."""
+    chain = a_chain(
+        {"block": "A", "gain": 15.0, "noise_figure": 2.0},
+        {"block": "B", "gain": 12.0, "noise_figure": 3.0},
+        {"block": "C", "gain": 10.0, "noise_figure": 8.0},
+    )
+    paths = zip(chain.positions, ("a", "b", ""), strict=True)
+    budget = chain.model_copy(
+        update={"positions": tuple(one.model_copy(update={"path": path}) for one, path in paths)}
+    )
+    found = apportion(budget, project_of(budget, limit=at_most(3.5)), DICTIONARY, way=way, at_nominal=True)
+    figures = {one.block: one.high for one in found.allotments if one.parameter == "noise_figure"}
+    g = {"A": 10**1.5, "B": 10**1.2}
+    whole = ((g["A"] ** 0.5 + g["B"] ** 0.5) / 2) ** 2
+    weight = {"A": g["A"] / (2 * whole), "B": g["B"] / (2 * whole), "C": 1 / whole}
+    parts = {name: (10 ** (figures[name] / 10) - 1) * weight[name] for name in weight}
+    assert 10 * math.log10(1 + sum(parts.values())) == pytest.approx(3.5, abs=0.01)
+    estimate = {"A": 2.0, "B": 3.0, "C": 8.0}
+    alike = [
+        part / (1.0 if way == "equal" else (10 ** (estimate[name] / 10) - 1) * weight[name])
+        for name, part in parts.items()
+    ]
+    assert max(alike) / min(alike) == pytest.approx(1.0, abs=0.015)
+
+
+@pytest.mark.parametrize(
+    ("figure", "law"), [("iip3", "coherent"), ("iip2", "coherent"), ("iip2", "non-coherent")]
+)
+def test_parallel_paths_share_distortion_equally(figure: str, law: str) -> None:
+    """Each position alone, the others ideal, would leave the same intercept: that is what an equal share is."""
+    chain = a_chain(
+        {"block": "A", "gain": 15.0, figure: 0.0},
+        {"block": "B", "gain": 12.0, figure: 3.0},
+        {"block": "C", "gain": 10.0, figure: 20.0},
+        parameter=figure,
+        intermodulation=law,
+    )
+    paths = zip(chain.positions, ("a", "b", ""), strict=True)
+    budget = chain.model_copy(
+        update={"positions": tuple(one.model_copy(update={"path": path}) for one, path in paths)}
+    )
+    snapshot = project_of(budget, limit=at_least(-10, "dBm"))
+    found = apportion(budget, snapshot, DICTIONARY, way="equal", at_nominal=True)
+    shares = {one.block: one.low for one in found.allotments if one.parameter == figure}
+    orders = {"A": 1, "B": 2, "C": 3}
+    everyone = {(orders[name], figure): value for name, value in shares.items()}
+    whole = evaluate_budget(budget, snapshot, DICTIONARY, values=everyone).of(figure).result[0]
+    assert whole == pytest.approx(-10.0, abs=0.02)
+    alone = [
+        evaluate_budget(
+            budget,
+            snapshot,
+            DICTIONARY,
+            values={key: (value if key[0] == order else 300.0) for key, value in everyone.items()},
+        )
+        .of(figure)
+        .result[0]
+        for order in orders.values()
+    ]
+    assert max(alone) - min(alone) < 0.05
