@@ -5,7 +5,9 @@ What may live here:
 - ``LAWS`` the one list of all laws, with what each needs, its settings, formula and source
 - ``law`` an entry of the list and what a law gives; ``samples`` what it is handed
 - ``said`` settings, ranges and choices of rows, read from what a person says; ``joining`` the columns it reads side
-  by side; ``coverage`` whether they cover the range; ``table`` a law applied to stored tables
+  by side; ``coverage`` whether they cover the range
+- ``request`` what is asked and what was given; ``table`` a law applied to stored tables, ``assembling`` what its groups
+  gave as one table
 - every other module: the laws of one family (over a range, of a pattern, of a power sweep ...)
 
 A law is a pure function on float64 arrays. It refuses what it cannot do: a range that is not covered is refused with
@@ -23,11 +25,12 @@ from specflow.derive.phase_noise import PHASE_NOISE_LAWS
 from specflow.derive.pointwise import POINTWISE_LAWS
 from specflow.derive.power_sweep import SWEEP_LAWS
 from specflow.derive.ranges import RANGE_LAWS
+from specflow.derive.request import Derived, Refused, Request, Role
 from specflow.derive.said import complete_settings
 from specflow.derive.samples import Readings, Samples
 from specflow.derive.scattering_laws import SCATTERING_LAWS
 from specflow.derive.sphere import SPHERE_LAWS
-from specflow.derive.table import Derived, Refused, Request, Role, derive_table
+from specflow.derive.table import derive_table
 
 LAWS: tuple[Law, ...] = (
     *RANGE_LAWS,

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
-from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
@@ -12,13 +11,11 @@ from numpy.typing import NDArray
 from specflow.conditions import DIRECTION_PAIRS, conditions_words
 from specflow.conditions.dimensions import word_key
 from specflow.conditions.recorded import recorded_numbers
+from specflow.derive.request import Role
 from specflow.derive.said import chosen
 from specflow.derive.samples import Readings
 from specflow.errors import DocumentError
 from specflow.model.columns import Columns, TextColumn
-
-if TYPE_CHECKING:
-    from specflow.derive.table import Role
 
 Floats = NDArray[np.float64]
 Rows = NDArray[np.intp]

@@ -3,23 +3,20 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping, Sequence
-from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import NDArray
 
 from specflow.conditions.groups import grouped_rows
-from specflow.conditions.words import difference_words, range_words, value_words
+from specflow.conditions.words import value_words
+from specflow.derive.assembling import Gathered, derived_of
 from specflow.derive.coverage import covered_rows
 from specflow.derive.joining import Joined, joined
 from specflow.derive.law import Law, Outcome
+from specflow.derive.request import Derived, Refused, Request, Result
 from specflow.derive.said import SaidRange, read_over, typed_settings
-from specflow.derive.samples import Range, Samples
+from specflow.derive.samples import Samples
 from specflow.errors import CalculationError, DocumentError, UnitError
-from specflow.model.columns import Columns, TextColumn
-from specflow.model.derivation import Covered
-from specflow.model.evidence import AT_COLUMN, SOURCE_COLUMN, EvidenceColumns, EvidenceTable, ValueArrays
-from specflow.model.parameter import Parameter
 from specflow.units import compatible, parse_unit
 
 Floats = NDArray[np.float64]
@@ -28,79 +25,6 @@ Rows = NDArray[np.intp]
 
 #: How many results are put into words for a preview; all are stored.
 MOST_TOLD = 1000
-
-
-@dataclass(frozen=True, slots=True)
-class Role:
-    """A value column that a law reads: its table and arrays, its name, and the rows of it that are meant."""
-
-    name: str
-    table: EvidenceTable
-    columns: EvidenceColumns
-    column: str
-    where: tuple[str, ...] = ()
-
-
-@dataclass(frozen=True, slots=True)
-class Request:
-    """A law, the columns that it reads, what was said to it (settings complete), and the parameter that it gives."""
-
-    law: Law
-    roles: tuple[Role, ...]
-    settings: Mapping[str, str]
-    gives: Parameter
-    over: tuple[str, ...] = ()
-    where: tuple[str, ...] = ()
-
-
-@dataclass(frozen=True, slots=True)
-class Refused:
-    """A group of rows from which the law could not be made: which one, why, and what would help."""
-
-    group: str
-    why: str
-    remedy: str
-
-
-@dataclass(frozen=True, slots=True)
-class Result:
-    """One derived row in words and figures, for a preview."""
-
-    group: str
-    value: float
-    high: float
-    u: float
-    at: str
-    readings: int
-
-
-@dataclass(frozen=True)
-class Derived:
-    """What a law made: the arrays of the derived table with its unit, and what is to be told.
-
-    ``covers``: the range that the values speak for. ``u_rule``: where u comes from, "" where the law knows no rule.
-    """
-
-    columns: EvidenceColumns
-    name: str
-    unit: str
-    u_rule: str
-    covers: tuple[Covered, ...]
-    results: tuple[Result, ...]
-    refused: tuple[Refused, ...] = ()
-    notes: tuple[str, ...] = ()
-
-
-@dataclass
-class _Gathered:
-    """What the groups gave so far."""
-
-    outcomes: list[tuple[Rows, Outcome]] = field(default_factory=list)
-    results: list[Result] = field(default_factory=list)
-    at: list[str] = field(default_factory=list)
-    refused: list[Refused] = field(default_factory=list)
-    notes: dict[str, None] = field(default_factory=dict)
-    largest_gap: float = 0.0
 
 
 def derive_table(request: Request) -> Derived:
@@ -113,14 +37,14 @@ def derive_table(request: Request) -> Derived:
     over = _over(request)
     axes = _axes(request, rows, over)
     apart = {*axes, *rows.told_apart}
-    found = _Gathered()
+    found = Gathered()
     every = np.arange(rows.size)
     each = request.law.over == "each"
     for group in [every] if each else grouped_rows(rows.conditions, rows.items, every, apart):
         _add_group(found, request, rows, axes, over, group)
     if not found.outcomes:
         _refuse_all(request, found)
-    return _derived(request, rows, over, apart, found)
+    return derived_of(request, rows, over, apart, found)
 
 
 def _over(request: Request) -> SaidRange | None:
@@ -146,7 +70,7 @@ def _axes(request: Request, rows: Joined, over: SaidRange | None) -> dict[str, F
 
 
 def _add_group(
-    found: _Gathered,
+    found: Gathered,
     request: Request,
     rows: Joined,
     axes: Mapping[str, Floats],
@@ -172,7 +96,7 @@ def _add_group(
 
 
 def _results(
-    found: _Gathered,
+    found: Gathered,
     request: Request,
     rows: Joined,
     apart: set[str],
@@ -270,7 +194,7 @@ def _place(rows: Joined, axes: Mapping[str, Floats], over: SaidRange | None, row
     return ", ".join(value_words(name, float(axis[row]), unit) for name, axis in axes.items())
 
 
-def _refuse_all(request: Request, found: _Gathered) -> None:
+def _refuse_all(request: Request, found: Gathered) -> None:
     if not found.refused:
         tables = ", ".join(dict.fromkeys(role.table.id for role in request.roles))
         raise DocumentError(
@@ -281,107 +205,4 @@ def _refuse_all(request: Request, found: _Gathered) -> None:
     table = request.roles[0].table.id
     raise CalculationError(
         f"{first.why}{more}", where=", ".join(filter(None, [table, first.group])), hint=first.remedy
-    )
-
-
-def _derived(
-    request: Request, rows: Joined, over: SaidRange | None, apart: set[str], found: _Gathered
-) -> Derived:
-    outcomes = [outcome for _, outcome in found.outcomes]
-    units = {outcome.unit for outcome in outcomes}
-    if len(units) > 1:
-        raise DocumentError(f"the groups give different units: {', '.join(sorted(units))}")
-    governing = np.concatenate([taken[outcome.rows] for taken, outcome in found.outcomes])
-    covers = _covers(request.law, over, found, outcomes)
-    rules = {outcome.u_rule for outcome in outcomes if outcome.u is not None}
-    return Derived(
-        _columns(request, rows, apart, found, governing),
-        request.gives.key,
-        outcomes[0].unit,
-        ", ".join(sorted(rules)),
-        covers,
-        tuple(found.results),
-        tuple(found.refused),
-        (*rows.notes, *found.notes),
-    )
-
-
-def _covers(
-    law: Law, over: SaidRange | None, found: _Gathered, outcomes: Sequence[Outcome]
-) -> tuple[Covered, ...]:
-    if over is None or any(over.dimension in outcome.axes for outcome in outcomes):
-        return ()
-    span: Range = over.range
-    return (
-        Covered(
-            dimension=over.dimension,
-            low=span.low,
-            high=span.high,
-            largest_gap=found.largest_gap,
-            unit=over.unit,
-            in_parts=law.in_parts,
-        ),
-    )
-
-
-def _columns(
-    request: Request, rows: Joined, apart: set[str], found: _Gathered, governing: Rows
-) -> EvidenceColumns:
-    base = request.roles[0].columns
-    outcomes = [outcome for _, outcome in found.outcomes]
-    origin = rows.base_rows[governing]
-    low = np.concatenate([outcome.value for outcome in outcomes])
-    high = np.concatenate([outcome.value if outcome.high is None else outcome.high for outcome in outcomes])
-    spread = [np.full(len(o.value), np.nan) if o.u is None else o.u for o in outcomes]
-    u = None if all(outcome.u is None for outcome in outcomes) else np.concatenate(spread)
-    extra = {AT_COLUMN: TextColumn.of(found.at)}
-    if SOURCE_COLUMN in base.extra:
-        extra[SOURCE_COLUMN] = base.extra[SOURCE_COLUMN].take(origin)
-    return EvidenceColumns(
-        conditions=_conditions(rows, apart, governing, outcomes),
-        values={request.gives.key: ValueArrays(low, low if np.array_equal(low, high) else high, u)},
-        source_rows=base.source_rows[origin],
-        items=base.items.take(origin),
-        dates=_dates(request, rows, found, origin),
-        extra=extra,
-    )
-
-
-def _conditions(rows: Joined, apart: set[str], governing: Rows, outcomes: Sequence[Outcome]) -> Columns:
-    kept = rows.conditions.take(governing)
-    numeric = {name: values for name, values in kept.numeric.items() if name not in apart}
-    text = {name: words for name, words in kept.text.items() if name not in apart}
-    units = {name: unit for name, unit in kept.units.items() if name in numeric}
-    for name in dict.fromkeys(name for outcome in outcomes for name in outcome.axes):
-        numeric[name] = np.concatenate([outcome.axes[name] for outcome in outcomes])
-        own = next((outcome.axis_units[name] for outcome in outcomes if name in outcome.axis_units), None)
-        stated = rows.said_units.get(name, rows.conditions.units.get(name, ""))
-        units[name] = stated if own is None else own
-    return Columns(len(governing), numeric, text, units)
-
-
-def _dates(request: Request, rows: Joined, found: _Gathered, origin: Rows) -> TextColumn | None:
-    """Return the earliest date among the rows of each group: what changed since then may touch the result.
-
-    Without a date where the columns come from several tables: the table as a whole says it, if it can.
-    """
-    dates = request.roles[0].columns.dates
-    if dates is None or len({role.table.id for role in request.roles}) > 1:
-        return None
-    if request.law.over == "each":
-        return dates.take(origin)
-    words: list[str | None] = []
-    for taken, outcome in found.outcomes:
-        known = [word for row in rows.base_rows[taken] if (word := dates.word(int(row)))]
-        whole = len(known) == len(taken)
-        words += [min(known) if known and whole else None] * len(outcome.value)
-    return TextColumn.of(words)
-
-
-def covered_words(covers: Sequence[Covered]) -> str:
-    """Say what derived values speak for: "17.7 to 20.2 GHz, largest gap 0.1 GHz"."""
-    return "; ".join(
-        f"{range_words(one.dimension, one.low, one.high, one.unit)}, largest gap "
-        f"{difference_words(one.largest_gap, one.unit)}"
-        for one in covers
     )

@@ -7,7 +7,7 @@ from typing import Any
 
 from specflow.derive import LAWS, Law
 from specflow.derive.law import Setting
-from specflow.derive.table import covered_words
+from specflow.derive.request import covered_words
 from specflow.model.report import CellTone, ReportCell, ReportColumn, ReportRow, ReportTable
 from specflow.units import format_value
 from specflow.workflows.derive import DerivePreview

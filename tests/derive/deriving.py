@@ -17,9 +17,9 @@ from specflow.derive import (
     complete_settings,
     derive_table,
 )
+from specflow.derive.request import Derived
 from specflow.derive.said import typed_settings
 from specflow.derive.samples import Range
-from specflow.derive.table import Derived
 from specflow.model.columns import TextColumn
 from specflow.model.evidence import ConditionColumn, EvidenceColumns, EvidenceTable, ValueArrays
 from specflow.model.parameter import Better, Parameter
