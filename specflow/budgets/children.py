@@ -1,7 +1,9 @@
 """What requirements on blocks allow the lines of a budget: the bounds of each line at every place.
 
 A requirement speaks of a line where it is on the same figure of the same block, or on one that is the same in other
-words: a gain is a loss with the other sign, a noise temperature is a noise figure.
+words: a gain is a loss with the other sign, a noise temperature is a noise figure, an intercept at one port is one at
+the other through the gain. There each side is taken with the end of the gain that hurts (conservative: the corner may
+not need that gain).
 """
 
 from __future__ import annotations
@@ -15,6 +17,7 @@ from specflow.budgets.allowed import Ends
 from specflow.budgets.chain import ReadLine
 from specflow.budgets.margins import declared_values
 from specflow.budgets.probe import Probe, line_name
+from specflow.budgets.spread import bounds
 from specflow.calculators.noise import noise_figure_of_temperature, noise_temperature
 from specflow.errors import UnitError
 from specflow.limits import LimitContext, evaluate_limit
@@ -26,6 +29,8 @@ from specflow.units import converter, parse_unit
 Floats = NDArray[np.float64]
 _LOSSES = frozenset({"insertion_loss", "conversion_loss", "attenuation"})
 _NOISE = frozenset({"noise_figure", "noise_temperature"})
+_PORTS = {"iip3": "oip3", "iip2": "oip2", "ip1db": "op1db"}
+_OTHER_PORT = _PORTS | {output: name for name, output in _PORTS.items()}
 
 
 def equivalents(parameter: str) -> frozenset[str]:
@@ -35,6 +40,8 @@ def equivalents(parameter: str) -> frozenset[str]:
         return _LOSSES | {key}
     if key in _LOSSES:
         return frozenset({key, "gain"})
+    if key in _OTHER_PORT:
+        return frozenset({key, _OTHER_PORT[key]})
     return _NOISE if key in _NOISE else frozenset({key})
 
 
@@ -49,32 +56,73 @@ def ends_of_children(probe: Probe, children: Sequence[Requirement]) -> tuple[lis
 
     Where line and requirement state different planes or statistics they are not compared, and it is said.
     """
-    ends: list[Ends | None] = []
+    lines = probe.chain.lines
+    ends: list[Ends | None] = [None] * len(lines)
     notes: list[str] = []
-    for read in probe.chain.lines:
-        own: Ends | None = None
+    # Gains first: what is stated at the other port goes through them.
+    for number in sorted(range(len(lines)), key=lambda one: lines[one].role.figure != "gain"):
         for child in children:
-            if not speaks_of(child, read):
-                continue
-            unlike = _unlike(child, read)
-            if unlike:
-                notes.append(
-                    f"{child.id} holds at another {unlike} than {line_name(read)} and bounds it nowhere"
-                )
-                continue
-            try:
-                found = line_ends(probe, read, child)
-            except UnitError as error:
-                notes.append(f"{child.id} cannot be compared with {line_name(read)}: {error.message}")
-                continue
-            own = found if own is None else (np.maximum(own[0], found[0]), np.minimum(own[1], found[1]))
-        ends.append(own)
+            if speaks_of(child, lines[number]):
+                found = _bound(probe, number, child, ends, notes)
+                own = ends[number]
+                if found is not None and own is not None:
+                    found = np.maximum(own[0], found[0]), np.minimum(own[1], found[1])
+                ends[number] = own if found is None else found
     return ends, notes
 
 
+def _bound(
+    probe: Probe, number: int, child: Requirement, ends: Sequence[Ends | None], notes: list[str]
+) -> Ends | None:
+    """Return what one requirement allows a line, None where the two are not compared, which is noted."""
+    read = probe.chain.lines[number]
+    unlike = _unlike(child, read)
+    if unlike:
+        notes.append(f"{child.id} holds at another {unlike} than {line_name(read)} and bounds it nowhere")
+        return None
+    try:
+        if _OTHER_PORT.get(code_key(child.quantity.parameter)) == code_key(read.line.parameter):
+            notes.append(
+                f"{child.id} is taken to the port of {line_name(read)} with the gain that hurts on each side"
+            )
+            return _through_gain(probe, read, child, ends)
+        return line_ends(probe, read, child)
+    except UnitError as error:
+        notes.append(f"{child.id} cannot be compared with {line_name(read)}: {error.message}")
+        return None
+
+
+def _through_gain(probe: Probe, read: ReadLine, child: Requirement, ends: Sequence[Ends | None]) -> Ends:
+    """Return bounds at the other port of a block as bounds at the port of a line."""
+    least, most = _gain_ends(probe, read.row, ends)
+    dropped = 1.0 if read.role.figure == "ip1db" else 0.0
+    low, high = child_ends(probe, read.row, child, "dBm")
+    if code_key(read.line.parameter) in _PORTS:
+        low, high = low - most + dropped, high - least + dropped
+    else:
+        low, high = low + least - dropped, high + most - dropped
+    back = converter(parse_unit("dBm"), parse_unit(read.line.unit))
+    return back(np.where(np.isnan(low), -np.inf, low)), back(np.where(np.isnan(high), np.inf, high))
+
+
+def _gain_ends(probe: Probe, row: int, ends: Sequence[Ends | None]) -> Ends:
+    """Return the lowest and the highest gain (n,) that a position is allowed, by tolerances where nothing says."""
+    least, most = np.zeros(probe.size), np.zeros(probe.size)
+    for number in probe.chain.at(row, "gain"):
+        read = probe.chain.lines[number]
+        own = ends[number] or bounds(read)
+        sides = [np.broadcast_to(read.figure(side), (probe.size,)) for side in own]
+        least, most = least + np.minimum(*sides), most + np.maximum(*sides)
+    return least, most
+
+
 def _unlike(child: Requirement, read: ReadLine) -> str:
-    """Name what both state of plane and statistic, and differently; "" where they agree."""
-    for part in ("plane", "statistic"):
+    """Name what both state of plane and statistic, and differently; "" where they agree.
+
+    At the other port the plane is another by itself.
+    """
+    is_same = code_key(child.quantity.parameter) == code_key(read.line.parameter)
+    for part in ("plane", "statistic") if is_same else ("statistic",):
         wanted, stated = getattr(read.line, part), getattr(child.quantity, part)
         if wanted and stated and code_key(wanted) != code_key(stated):
             return part

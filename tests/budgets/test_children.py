@@ -31,7 +31,8 @@ BAND = a_conditions_set("CS", a_dimension("frequency", values=(27.5, 30.0)))
 
 def a_probe(*stages: dict[str, Any], documents: tuple[Any, ...] = (), **fields: Any) -> Probe:
     budget = a_chain(*stages, conditions="CS", **fields)
-    return Probe.of(budget, project_of(budget, BAND, *documents), DICTIONARY)
+    limit = parse_limit(">= -100 dBm") if "ip" in budget.quantity.parameter else None
+    return Probe.of(budget, project_of(budget, BAND, *documents, limit=limit), DICTIONARY)
 
 
 def child(block: str, parameter: str, limit: str, **fields: Any) -> Requirement:
@@ -89,3 +90,24 @@ def test_closure_holds_with_limits_in_other_words() -> None:
     ]
     found = closure_of_children(probe, children)
     assert found.closes is True and found.limits[0].smallest == pytest.approx(100 - 2.2 - 3.0103, abs=1e-3)
+
+
+def test_an_output_intercept_holds_a_line_at_the_input_with_the_gain_that_hurts() -> None:
+    """OIP3 at least 20 dBm and a gain of 9 to 11 dB: IIP3 at least 9 dBm, as a gain of 11 dB would have it."""
+    probe = a_probe({"block": "A", "gain": 10.0, "iip3": 12.0}, parameter="iip3")
+    gain = child("A", "gain", "9..11 dB")
+    output = child("A", "oip3", ">= 20 dBm").model_copy(update={"id": "A-2"})
+    ends, notes = ends_of_children(probe, [output, gain])
+    assert ends[1] is not None
+    assert ends[1][0].tolist() == [9.0, 9.0] and np.isposinf(ends[1][1]).all()
+    assert any("gain that hurts" in note for note in notes)
+    ends, _ = ends_of_children(probe, [output, child("A", "gain", ">= 9 dB")])
+    assert ends[1] is not None and np.isneginf(ends[1][0]).all()  # a gain without end leaves nothing shown
+
+
+def test_an_input_compression_point_holds_a_line_at_the_output() -> None:
+    """IP1dB at least 0 dBm, gain 10 dB ± 0.5 dB by its tolerance: OP1dB at least 0 + 9.5 - 1 dBm."""
+    window = {"minus": 0.5, "plus": 0.5, "meaning": "limits", "distribution": "uniform"}
+    stage = {"block": "A", "gain": 10.0, "op1db": 10.0, "more": {"gain": {"tolerance": window}}}
+    ends, _ = ends_of_children(a_probe(stage, parameter="ip1db"), [child("A", "ip1db", ">= 0 dBm")])
+    assert ends[1] is not None and ends[1][0].tolist() == pytest.approx([8.5, 8.5])
