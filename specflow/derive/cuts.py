@@ -19,6 +19,7 @@ from specflow.derive.samples import Samples, figure
 from specflow.errors import CalculationError
 
 Floats = NDArray[np.float64]
+Rows = NDArray[np.intp]
 
 #: The condition that the angle off the commanded direction is recorded as.
 OFF_AXIS = "off_axis_angle"
@@ -33,16 +34,34 @@ def beamwidth(samples: Samples) -> Outcome:
     2·acos(2^(-1/n)) at half power.
     Source: IEEE Std 145, half-power beamwidth (from memory).
     """
-    values, below = _in_db(samples), samples.number("below")
+    along, values, rows = _cut(samples)
+    below = samples.number("below")
     if below <= 0:
         raise CalculationError(f"below is {below:g}; it is a positive distance from the peak")
-    edges = edges_about_peak(samples.along, values, float(values.max()) - below)
+    edges = edges_about_peak(along, values, float(values.max()) - below)
     ends = [
         value_words(samples.axis, float(f"{end:.7g}"), samples.axis_unit) for end in (edges.low, edges.high)
     ]
     notes = ("another lobe comes within the level; the width is that about the peak",) if edges.again else ()
     at = f"{ends[0]} to {ends[1]}, interpolated"
-    return single(edges.high - edges.low, samples.axis_unit, edges.peak, at=at, notes=notes)
+    row = int(rows[edges.peak])
+    return single(edges.high - edges.low, samples.axis_unit, row, at=at, notes=notes)
+
+
+def _cut(samples: Samples) -> tuple[Floats, Floats, Rows]:
+    """Return angle, level in dB and row along a cut; one that goes all round is turned so that its peak is amid it."""
+    along, values, rows = samples.along, _in_db(samples), np.arange(samples.size)
+    if samples.axis_unit != "deg" or len(along) < 8:
+        return along, values, rows
+    step = float(np.diff(along).max())
+    if along[-1] - along[0] < 360.0 - 1.001 * step:
+        return along, values, rows
+    once = along < along[0] + 360.0 - 1e-6 * max(step, 1.0)  # the last reading may be the first again
+    along, values, rows = along[once], values[once], rows[once]
+    centre = float(along[int(np.argmax(values))])
+    turned = np.mod(along - centre + 180.0, 360.0) - 180.0 + centre
+    order = np.argsort(turned, kind="stable")
+    return turned[order], values[order], rows[order]
 
 
 @dataclass(frozen=True, slots=True)
@@ -89,11 +108,11 @@ def side_lobe_level(samples: Samples) -> Outcome:
     without a null within the cut holds no side lobe, and that is told. No uncertainty is derived.
     Source: IEEE Std 145, side lobe (from memory); uniform line: -13.26 dB.
     """
-    values = _in_db(samples)
+    _, values, rows = _cut(samples)
     lobe = main_lobe(values, samples.number("null depth"))
     outside = np.concatenate([np.arange(lobe.left), np.arange(lobe.right + 1, len(values))])
-    row = int(outside[np.argmax(values[outside])])
-    level = float(values[row] - values[lobe.peak])
+    place = int(outside[np.argmax(values[outside])])
+    level = float(values[place] - values[lobe.peak])
     missing = [
         side for side, end in (("lower", lobe.left == 0), ("upper", lobe.right == len(values) - 1)) if end
     ]
@@ -102,7 +121,7 @@ def side_lobe_level(samples: Samples) -> Outcome:
     )
     if samples.word("sign") == "suppression":
         level = -level
-    return single(level, "dB", row, notes=notes)
+    return single(level, "dB", int(rows[place]), notes=notes)
 
 
 def _in_db(samples: Samples) -> Floats:

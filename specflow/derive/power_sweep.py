@@ -76,6 +76,11 @@ def compression_point(samples: Samples) -> Outcome:
     level, output, gain, rows = _linear_gain(samples, "output")
     last = int(rows[-1])
     short = gain - (output - level) - samples.number("compression")
+    if short[last] >= 0:
+        raise CalculationError(
+            f"the gain has fallen by {figure(float(gain - (output - level)[last]))} dB before the linear range ends",
+            hint="state a linear range that ends lower",
+        )
     reached = np.flatnonzero((short[last:-1] < 0) & (short[last + 1 :] >= 0)) + last
     if not len(reached):
         most = float(np.max(gain - (output - level)[last:]))

@@ -201,7 +201,6 @@ SPHERE_LAWS: tuple[Law, ...] = (
         over="directions",
         needs="one value column over directions",
         keeps_parameter=True,
-        statistic="peak",
     ),
     Law(
         "pointing error",

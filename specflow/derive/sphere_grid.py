@@ -15,7 +15,7 @@ from specflow.conditions import DIRECTION_PAIRS
 from specflow.conditions.directions import direction_vectors
 from specflow.derive.samples import Samples
 from specflow.errors import CalculationError
-from specflow.statistics.sphere import covers_sphere, grid_weights, unique_directions
+from specflow.statistics.sphere import grid_weights, unique_directions
 from specflow.units import Kind
 
 Floats = NDArray[np.float64]
@@ -25,6 +25,9 @@ Rows = NDArray[np.intp]
 _EVEN = 0.05
 #: How many mean spacings the farthest place on the sphere may lie from the nearest reading.
 _HOLE = 1.25
+#: The widest step around a ring: that of the coarsest published grid (62 points, 3GPP TS 38.521-2 table M.4.5-3, seen).
+_WIDEST_TURN = 30.0
+_CLOSE = 1e-3
 
 
 @dataclass(frozen=True, slots=True)
@@ -117,7 +120,7 @@ def _unique(theta: Floats, phi: Floats, power: Floats) -> tuple[Floats, Floats, 
 
 
 def _constant_step(theta: Floats, phi: Floats, how: str) -> Floats:
-    if not covers_sphere(theta, phi):
+    if not _rings_go_round(theta, phi):
         low, high = float(theta.min()), float(theta.max())
         raise CalculationError(
             f"the {len(theta)} directions (θ {low:g} to {high:g}°) are no constant-step grid over the whole sphere",
@@ -136,6 +139,24 @@ def _constant_step(theta: Floats, phi: Floats, how: str) -> Floats:
         np.sin(np.radians(rings)) * np.radians(step) / 2 if how == "sine" else clenshaw_curtis(len(rings) - 1)
     )
     return np.asarray((ring / counts)[ring_of.reshape(-1)])
+
+
+def _rings_go_round(theta: Floats, phi: Floats) -> bool:
+    """Whether rings of one step, pole to pole, each go all round in even steps (which may be wider than that of θ)."""
+    rings, ring_of = np.unique(np.round(theta, 6), return_inverse=True)
+    if len(rings) < 3:
+        return False
+    steps = np.diff(rings)
+    step = float(steps.min())
+    if steps.max() > step + _CLOSE or rings[0] > step / 2 + _CLOSE or rings[-1] < 180 - step / 2 - _CLOSE:
+        return False
+    for place, ring in enumerate(rings):
+        if _CLOSE < ring < 180 - _CLOSE:
+            around = np.sort(phi[ring_of.reshape(-1) == place])
+            gaps = np.diff(around, append=around[0] + 360.0)
+            if gaps.max() > min(gaps.min() + _CLOSE, _WIDEST_TURN + _CLOSE):
+                return False
+    return True
 
 
 def clenshaw_curtis(n: int) -> Floats:

@@ -71,7 +71,7 @@ def request_of(
     roles = _roles(law, options, tables, arrays or snapshot.load_columns([table.id for table in tables]))
     _check_alike(law, roles)
     settings = complete_settings(law, options.settings)
-    quantity = options.quantity or _quantity(snapshot, dictionary, law, options, settings, roles[0])
+    quantity = options.quantity or _quantity(snapshot, dictionary, law, options, settings, roles)
     parameter = dictionary.get(quantity.parameter)
     if parameter is None:
         raise DocumentError(f"{quantity.parameter} is no known parameter", where=options.requirement)
@@ -185,9 +185,10 @@ def _quantity(
     law: Law,
     options: DeriveOptions,
     settings: Mapping[str, str],
-    first: Role,
+    roles: Sequence[Role],
 ) -> QuantityIdentity:
     """Return the quantity that the result is of: as said, as the requirement has it, or that of the column read."""
+    first = roles[0]
     own = next(one.quantity for one in first.table.values if one.name == first.column)
     if options.requirement:
         requirement = snapshot.find(Requirement, options.requirement)
@@ -209,12 +210,14 @@ def _quantity(
     named = law.statistic.format(**settings) if law.statistic else (own.statistic if same else "")
     if not same and named not in parameter.statistics:
         named = ""
+    read = [next(one.quantity for one in role.table.values if one.name == role.column) for role in roles]
+    planes, polarisations = ({getattr(one, part) for one in read} for part in ("plane", "polarisation"))
     return QuantityIdentity(
         parameter=key,
-        plane=options.plane or own.plane,
+        plane=options.plane or (own.plane if len(planes) == 1 else ""),
         statistic=options.statistic or named,
         bandwidth_hz=own.bandwidth_hz if same else None,
-        polarisation=options.polarisation or own.polarisation,
+        polarisation=options.polarisation or (own.polarisation if len(polarisations) == 1 else ""),
     )
 
 

@@ -61,3 +61,17 @@ def test_a_side_without_a_null_is_told_and_none_at_all_refused() -> None:
 def test_a_beam_that_the_cut_does_not_hold_is_refused() -> None:
     with pytest.raises(CalculationError, match="the upper edge lies beyond the range"):
         value_of("beamwidth", np.arange(5.0), [-10, -5, 0, -1, -2], unit="dBi", **ANGLE)
+
+
+def test_a_beam_across_the_ends_of_a_full_turn_is_one_beam() -> None:
+    """An azimuth cut from 0 to 360° with its beam at 0°: turned so that the beam is whole."""
+    around = np.arange(0.0, 360.01, 1.0)
+    off = np.abs((around + 180) % 360 - 180)
+    values = np.maximum(-3 * (off / 5) ** 2, -40) + np.where((off > 60) & (off < 70), 15.0, 0.0)
+    fields = {"unit": "dBi", "axis": "azimuth", "axis_unit": "deg"}
+    width = law_on("beamwidth", around, values, below="3 dB", **fields)
+    assert width.value[0] == pytest.approx(10)
+    assert width.rows[0] == 0
+    lobes = law_on("side lobe level", around, values, **fields)
+    assert lobes.value[0] == -25
+    assert 60 < around[lobes.rows[0]] < 70 or 290 < around[lobes.rows[0]] < 300

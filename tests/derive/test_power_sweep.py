@@ -92,3 +92,18 @@ def test_efficiency_at_a_level() -> None:
 def test_a_sweep_over_something_else_is_refused() -> None:
     with pytest.raises(CalculationError, match="runs over frequency in GHz, not over an input level"):
         value_of("saturated power", [1, 2, 3], [1, 2, 3], unit="dBm")
+
+
+def test_a_linear_range_that_ends_in_compression_is_refused() -> None:
+    rows = LEVEL < 4
+    with pytest.raises(CalculationError, match="before the linear range ends"):
+        value_of(
+            "compression point",
+            LEVEL[rows],
+            cubic(LEVEL[rows]),
+            unit="dBm",
+            referred="input",
+            linear_from="-40 dBm",
+            linear_to="3 dBm",
+            **AXIS,
+        )

@@ -247,3 +247,15 @@ def test_the_angle_off_the_commanded_direction_is_that_on_the_sphere() -> None:
         np.degrees(np.arccos(np.clip(cosine, -1, 1))), abs=1e-5
     )
     assert (found.value == np.arange(theta.size)).all()
+
+
+def test_steps_around_may_be_wider_than_those_from_the_pole() -> None:
+    theta, phi = (axis.ravel() for axis in np.meshgrid(np.arange(0, 181, 5.0), np.arange(0, 360, 15.0)))
+    found = value_of("directivity", values=cosine_power(theta, 4), unit="W", directions=(theta, phi))
+    assert found == pytest.approx(10 * np.log10(10), abs=0.03)
+    with pytest.raises(CalculationError, match="no constant-step grid"):  # one ring has a direction more
+        more = np.append(theta, 90.0), np.append(phi, 50.0)
+        value_of("trp", values=np.zeros(theta.size + 1), unit="dBm", directions=more)
+    kept = ~((theta == 90) & (phi == 45))  # one direction of one ring is missing
+    with pytest.raises(CalculationError, match="no constant-step grid"):
+        value_of("trp", values=np.zeros(kept.sum()), unit="dBm", directions=(theta[kept], phi[kept]))

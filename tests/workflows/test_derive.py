@@ -505,3 +505,18 @@ def test_a_result_of_two_tables_is_as_old_as_the_older(store: ProjectStore) -> N
     assert found is not None
     assert (found.performed_on, [one.asset for one in found.equipment]) == (date(2026, 3, 1), ["PM-1"])
     assert found.rows == 52
+
+
+def test_the_sum_of_two_polarisations_is_of_neither(store: ProjectStore) -> None:
+    table, columns = a_trace(
+        "T-7",
+        {"V": [30.0, 29], "H": [20.0, 19]},
+        quantities={name: {"parameter": "eirp", "polarisation": name} for name in ("V", "H")},
+        units={"V": "dBm", "H": "dBm"},
+        theta=[0, 10],
+        phi=[0, 0],
+    )
+    store.apply(adding(table), columns={"T-7": columns}, by="A. B.")
+    preview = preview_derive(store, DeriveOptions("power sum", ("T-7",), values=("V", "H")))
+    assert preview.derivation.gives == a_quantity("eirp")
+    assert preview.derived.columns.values["eirp"].low[0] == pytest.approx(30.4139, abs=1e-4)
