@@ -619,3 +619,36 @@ def test_any_protected_cell_that_is_edited_is_found(
     edited(path, lambda workbook: workbook[one.name].__setitem__(cell.address, entry))
     found = [(place, what) for place, what in asked(store, path) if place == cell.address]
     assert bool(found) is not same, (cell, entry)
+
+
+def test_an_error_and_a_formula_without_a_value_are_no_empty_cells(
+    store: ProjectStore, tmp_path: Path
+) -> None:
+    path = written(store, tmp_path / "t.xlsx", requirements=["G-1"])
+    entries = {1: "#DIV/0!", 2: "=1+1", 3: 22}
+    fill(path, lambda row: {"Value": entries.get(row["No."]), "Item": "LNA-1"})
+    [table] = look(store, path).measurements.tables
+    assert table.values == 1 and len(table.rejected) == 2
+    assert {one.cell for one in table.rejected} == {"J9", "J10"}
+
+
+def test_a_percent_format_is_read_as_what_is_shown_or_asked_about(
+    store: ProjectStore, tmp_path: Path
+) -> None:
+    store.apply(adding(requirement("E-1", "<= 12 %", "evm", block="PA")), by="A. B.")
+    path = written(store, tmp_path / "t.xlsx", requirements=["E-1", "G-1"])
+
+    def all_percent(workbook: Workbook) -> None:
+        for name in ("PA", "LNA"):
+            sheet = workbook[name]
+            header, by_title = columns(sheet)
+            for row in range(header + 1, sheet.max_row + 1):
+                if isinstance(sheet.cell(row, 1).value, int | float):
+                    sheet.cell(row, by_title["Item"]).value = "PA-1" if name == "PA" else "LNA-1"
+                    sheet.cell(row, by_title["Value"]).value = 0.05
+                    sheet.cell(row, by_title["Value"]).number_format = "0.0%"
+
+    tables = {table.sheet: table for table in look(store, edited(path, all_percent)).measurements.tables}
+    pa, lna = tables["PA"], tables["LNA"]
+    assert pa.columns is not None and set(pa.columns.values["Value"].low) == {5.0}
+    assert lna.questions or lna.values == 0  # a percentage of gain in dB is not one
