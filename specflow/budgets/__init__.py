@@ -15,8 +15,8 @@ What may live here, in the order of a run:
   Monte Carlo
 - backwards: ``probe`` a budget evaluated again and again; ``solve`` one unknown (``bracketing``, ``closed_form``,
   ``inverse_figures``); ``allotment`` what a block may have, ``apportion`` shares (``contribution``, ``growth``,
-  ``plain_shares``), ``effort`` the least of it; ``allowed`` the worst allowed corner, ``closure`` the test of it;
-  ``serving``, ``following`` links that hold
+  ``plain_shares``), ``effort`` the least of it; ``children`` what requirements on blocks allow, ``allowed`` the worst
+  allowed corner, ``closure`` the test of it; ``serving``, ``following`` links that hold
 - as known: ``knowledge`` the best source of a line, ``as_known`` the budget with it, ``reallocation`` after a miss
 - ``trial`` before and after a change
 

@@ -222,6 +222,12 @@ def test_budgets_that_are_refused(tmp_path: Path, change: dict[str, Any], words:
     assert any(words in message for message in found), found
 
 
+def test_a_line_given_twice_is_refused_at_its_own_cell(tmp_path: Path) -> None:
+    draft = draft_of(tmp_path, lines=[LINES[0], LINES[0]])
+    (finding,) = [one for one in draft.findings if "is given above" in one.message]
+    assert finding.origin is not None and finding.origin.row == 3
+
+
 def test_a_position_is_described_once(tmp_path: Path) -> None:
     lines = [LINES[0] | {"N in parallel": 4}, LINES[1] | {"N in parallel": 8}]
     assert any("says 4 above" in message for message in errors(draft_of(tmp_path, lines=lines)))
