@@ -11,9 +11,9 @@
 - what: ``header_text`` (a header taken apart) with ``scale_text`` (its factor), ``roles``, ``quantity_text``,
   ``unit_source`` and ``cell_units`` (what its words, its cells and unit columns say), ``meaning`` (the order of
   decisions) with ``column``, ``value_column``, ``condition_column``, ``constants``, ``pairing`` and ``scaling``
-- said: ``stated`` (by the person, the mapping or the file, for all rows) with ``names``, ``day``, ``instrument``
-  (exports of analysers) and ``formats``, ``mapping`` (TOML) with ``mapping_parts``, ``proposal``, ``context`` (what the
-  project knows), ``items`` (words that name specimens)
+- said: ``stated`` (by the person, the mapping or the file, for all rows), taken by ``stating`` with ``names``,
+  ``day``, ``instrument`` (exports of analysers) and ``formats``; ``mapping`` (TOML) with ``mapping_parts``,
+  ``proposal``, ``context`` (what the project knows), ``items`` (words that name specimens)
 - read: ``selection`` (which rows), ``readings`` (numbers and intervals), ``placeholders``, ``linear_values``,
   ``words``, ``conditions``, ``directions``, ``uncertainty``, ``values``, ``pivot`` (one quantity at several
   conditions), ``rejects``, ``subject`` (block and items)

@@ -25,10 +25,12 @@ from specflow.importers.measured.pivot import stack, with_location
 from specflow.importers.measured.rejects import Rejects
 from specflow.importers.measured.result import ColumnReading, MeasuredTable, Question, Role
 from specflow.importers.measured.row_kinds import by_row_kind
+from specflow.importers.measured.scaling import ask_about_title
 from specflow.importers.measured.selection import select_rows
 from specflow.importers.measured.slip_findings import slip_findings
-from specflow.importers.measured.stated import PERSON, Stated, collect
+from specflow.importers.measured.stated import PERSON, Stated
 from specflow.importers.measured.statements import is_reading
+from specflow.importers.measured.stating import collect
 from specflow.importers.measured.subject import find_block, item_name, item_notes
 from specflow.importers.measured.values import column_name, read_values, with_register
 from specflow.importers.measured.words import fill_down, read_dates, read_words
@@ -74,6 +76,7 @@ def read_table(located: LocatedTable, context: Context, person: Mapping[str, str
     rejects = Rejects(sheet, table.grid.turned, keep_placeholders=mapping.keep_placeholders)
     work = TableWork(table, context, mapping, stated, rejects)
     work.notes += [*table.notes, *(remark.words for remark in table.stepped_over)]
+    ask_about_title(work, located.preamble.title)
     work.questions += [*table.doubts, *([settled] if isinstance(settled, Question) else [])]
     _ask_about_remarks(work)
     _ask_about_groups(work)

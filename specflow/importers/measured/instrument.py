@@ -96,6 +96,11 @@ _CORRECTED = re.compile(
     r"^(?:level |power |amplitude )?offset$|loss comp\w*|ref(?:erence)?(?: level)? offset|external (?:gain|att\w*)",
     re.IGNORECASE,
 )
+_NORMALISED = re.compile(r"\bnormali[sz]", re.IGNORECASE)
+_SCALED = re.compile(
+    r"\bscale factor|\bscaling|\bmultiplier|^scale$|^factor$|\b[xy] ?(?:scale|mult(?:iplier)?|factor)$|\bnormali[sz]",
+    re.IGNORECASE,
+)
 _NOT_DONE = frozenset(
     [
         "no",
@@ -147,6 +152,15 @@ def names_instrument(key: str) -> bool:
 def names_model(key: str) -> bool:
     """Whether a key of an export names the model of the instrument."""
     return _plain(key) in ("model", "machinemodule", "modelnumber", "instrumentmodel")
+
+
+def says_scaled(key: str, text: str) -> bool:
+    """Whether a fact speaks of a factor of all readings: "Scale factor: 0.1", "Normalised to peak: 32 dBi"."""
+    if not _SCALED.search(key) or text.strip().casefold() in ("1", "1.0", "1.000", *_NOT_DONE):
+        return False
+    if "/" in text:
+        return False  # 10 dB/div is how a screen was set
+    return bool(_NORMALISED.search(key)) or bool(re.search(r"[0-9]", text))
 
 
 def says_corrected(key: str, text: str) -> bool:

@@ -16,7 +16,7 @@ from specflow.importers.measured.parts import parts_of
 from specflow.importers.measured.place_facts import facts_of_cells
 from specflow.importers.measured.placed import clipped, first_row_above, table_in_area
 from specflow.importers.measured.settled import GivenMappings, Mappings, Settled, kept_under
-from specflow.importers.measured.stated import holds_below
+from specflow.importers.measured.stating import holds_below
 from specflow.importers.measured.tables import FoundTable, cut_table, rows_of_numbers
 from specflow.importers.measured.titles import with_titles
 from specflow.importers.readers import CellRange, Grid

@@ -49,6 +49,7 @@ NAMES: Mapping[str, tuple[str, ...]] = {
                     "standard uncertainty"),
     "temperature": (),
     "corrected": (),
+    "scaled": (),
     "directions": (),
     "corrections": ("correction", "corrections", "corrections applied"),
 }  # fmt: skip

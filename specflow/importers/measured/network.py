@@ -23,7 +23,7 @@ from specflow.importers.measured.network_ports import KEY, named_ports, unknown_
 from specflow.importers.measured.rejects import Rejects
 from specflow.importers.measured.result import ColumnReading, MeasuredTable, Role
 from specflow.importers.measured.settled import GivenMappings, Mappings
-from specflow.importers.measured.stated import collect
+from specflow.importers.measured.stating import collect
 from specflow.importers.measured.subject import find_block, item_name, item_notes
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.measured.work import TableWork

@@ -8,6 +8,8 @@ from dataclasses import replace
 from specflow.importers.measured.column import ColumnMeaning
 from specflow.importers.measured.mapping import ColumnMapping
 from specflow.importers.measured.result import Role
+from specflow.importers.measured.scale_text import without_factor
+from specflow.importers.measured.work import TableWork
 
 _SCALED = re.compile(r"^(?P<number>\d+(?:\.\d+)?(?:[eE][+\-]?\d+)?)\s*(?P<unit>[^\d\s].*)$")
 _NUMERIC = (Role.VALUE, Role.CONDITION, Role.UNCERTAINTY, Role.PIVOT)
@@ -19,6 +21,16 @@ def scaled_unit(text: str) -> tuple[float | None, str]:
     if found is None or float(found["number"]) == 0:
         return None, text
     return float(found["number"]), found["unit"]
+
+
+def ask_about_title(work: TableWork, title: str) -> None:
+    """Ask about a factor in the line above a table: "All levels x 0.1 dBm"."""
+    factor = without_factor(title)[1]
+    if factor is None or re.search(r"\d\s*[x×*]", title) or work.stated.text("scaled"):
+        return
+    what = f"{title[:60]!r} stands above the table; it does not say whether the readings hold {factor.text!r} already"
+    remedy = "--state scaled=yes takes them as they stand; else scale = ... for the columns in a mapping, and that, too"
+    work.ask("", work.table.place, what, remedy)
 
 
 def with_scale(meaning: ColumnMeaning, entry: ColumnMapping) -> ColumnMeaning:

@@ -197,6 +197,12 @@ TAKEN = {
         [["f (GHz)", "Gain (dB)", "Limit", "Verdict"], [28, 20, "≥ 19 dB", "met"]],
         {"Gain": [20]},
     ),
+    "a factor that is said to be in": Taken(
+        under(["EIRP (dBm)"], [40, 41, 42], above=[["Scale factor", 0.1], ["Scale", "10 dB/div"]]),
+        {"EIRP": [40, 41, 42]},
+        said={"scaled": "yes"},
+        words=["the readings are taken as they stand"],
+    ),
     "the plane of a cut": Taken(
         [["Cut: phi = 90 deg"], ["Angle (deg)", "Gain (dBi)"], [0, 20], [1, 19.9]],
         {"Gain": [20, 19.9]},
@@ -215,6 +221,19 @@ TAKEN = {
 
 ASKED = {
     "a power density by its product": Asked(under(["Gain (mW/cm*cm)"], [1, 2, 3]), "B1", "Gain in mW/cm²"),
+    "a factor above the table": Asked(
+        under(["EIRP (dBm)"], [400, 401, 402], above=[["Scale factor", 0.1]]), "B1", "Scale factor: 0.1"
+    ),
+    "a factor in the title": Asked(
+        under(["EIRP (dBm)"], [400, 401, 402], above=[["All levels x 0.1 dBm"]]),
+        "A3:B6",
+        "hold 'x 0.1 dBm' already",
+    ),
+    "readings relative to their peak": Asked(
+        under(["Gain (dB)"], [0, -1, -2], above=[["Normalised to peak: 32.1 dBi"]]),
+        "A1",
+        "Normalised to peak",
+    ),
     "a ratio of voltages under a gain": Asked(
         under(["Gain (V/V)"], [10, 11, 12]), "B1", "V/V is a ratio of amplitudes, Gain is one of powers"
     ),
