@@ -17,6 +17,7 @@ DELIMITERS = ("\t", ";", ",", "|", BLANKS)
 SAMPLE_LINES = 400
 
 _MOST_SETTINGS = 6
+_MOST_WORDS = 4
 
 _NUMBER = re.compile(r"[<>≤≥]?\s*[+\-−]?(?:[0-9]+(?:[.,][0-9]*)?|[.,][0-9]+)(?:[eE][+\-−]?[0-9]+)?\s*%?")
 _WITH_COMMA = re.compile(r"[^,]*[0-9]*,[0-9]+[^,]*")
@@ -71,13 +72,20 @@ def split(line: str, delimiter: str) -> list[str]:
 def split_preamble(line: str) -> list[str]:
     """The fields of a line of settings that is parted otherwise than the body: ``Start,10,MHz``.
 
-    A comma between digits ("23,5") may be a decimal mark there: such a line stays whole.
+    A comma between digits ("23,5") may be a decimal mark there: such a line stays whole. So does prose.
     """
     for delimiter in ("\t", ";", "|", ","):
         fields = split(line, delimiter)
         if 1 < len(fields) <= _MOST_SETTINGS and not (delimiter == "," and _COMMA_IN_NUMBER.search(line)):
-            return fields
+            return fields if delimiter == "\t" or _are_settings(fields) else [line]
     return [line]
+
+
+def _are_settings(fields: Sequence[str]) -> bool:
+    """A key of few words and short values, of which the first is a number, or one word."""
+    first = fields[1]
+    is_value = first[:1] in "+-−.0123456789" or len(first.split()) <= 1
+    return is_value and all(len(field.split()) <= _MOST_WORDS for field in fields)
 
 
 def is_setting(line: str, field: str) -> bool:

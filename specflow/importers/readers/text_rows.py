@@ -20,6 +20,8 @@ from specflow.importers.readers.stores import Value
 
 COMMENT_MARKS = ("#", "!", "%", "//")
 
+_KEY_LINE = re.compile(r"[^\W\d_][^:=,;0-9]{0,40}[:=]\s*\S")
+
 
 class TextLines:
     """Some lines of a text table. ``first`` is the first line of the file that is not blank, by which the comment mark
@@ -86,17 +88,10 @@ class TextLines:
         self._part_settings(rows)
 
     def _part_settings(self, rows: list[list[Value]]) -> None:
-        """Settings in a format of their own: at least two lines that are parted in the same way."""
-        whole = [
-            place for place, row in enumerate(rows) if len(row) == 1 and place + 1 not in self.comments
-        ]
-        parted = {place: fields for place in whole if len(fields := split_preamble(str(rows[place][0]))) > 1}
-        if len(parted) > 1:
-            for place, fields in parted.items():
-                rows[place] = list(fields)
-
-
-_KEY_LINE = re.compile(r"[^\W\d_][^:=,;0-9]{0,40}[:=]\s*\S")
+        """Settings in a format of their own, each line for itself."""
+        for place, row in enumerate(rows):
+            if len(row) == 1 and place + 1 not in self.comments:
+                rows[place] = list(split_preamble(str(row[0])))
 
 
 def _other_section(line: str, row: list[Value], delimiter: str) -> list[str] | None:
