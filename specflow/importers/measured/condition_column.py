@@ -38,7 +38,9 @@ def condition_of(heading: Heading, dimension: KnownDimension, unit: FoundUnit, r
             f"{dimension.title} in {unit.unit or 'no unit'}; expected is a unit like {dimension.unit or '1'}"
         )
     if problem:
-        return heading.ask_unit(problem, dimension.unit, "axis_unit" if _takes_axis_unit(dimension, unit) else "")
+        return heading.ask_unit(
+            problem, dimension.unit, "axis_unit" if _takes_axis_unit(dimension, unit) else ""
+        )
     return replace(
         heading.means(Role.CONDITION, f"{reason}; unit from {unit.source}" if unit.source else reason),
         dimension=dimension.name,

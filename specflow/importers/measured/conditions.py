@@ -73,7 +73,9 @@ def _numbers(
     if numbers.problem:
         remedy = "give the whole column one number format, and attach again"
         read.questions.append(
-            Question(meaning.header.text, meaning.header.cell, f"{meaning.header.line}: {numbers.problem}", remedy)
+            Question(
+                meaning.header.text, meaning.header.cell, f"{meaning.header.line}: {numbers.problem}", remedy
+            )
         )
     read.notes += [f"{meaning.header.line}: {note}" for note in numbers.notes]
     values = numbers.low

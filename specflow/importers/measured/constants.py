@@ -44,7 +44,9 @@ def mapping_settles(mapping: LayoutMapping, header: str, letter: str) -> bool:
 
 
 def _are_bandwidths(role: Role, words: set[str], unit: str) -> bool:
-    return role is Role.BANDWIDTH and bool(words) and all(bandwidth_in(word, unit) is not None for word in words)
+    return (
+        role is Role.BANDWIDTH and bool(words) and all(bandwidth_in(word, unit) is not None for word in words)
+    )
 
 
 @dataclass(frozen=True, slots=True)
@@ -86,8 +88,6 @@ def read_constants(table: FoundTable, mapping: LayoutMapping, stated: Stated) ->
             text = words.pop()
             unit = parts.unit or header.unit
             text = f"{text} {unit}" if unit and looks_numeric(text) else text
-            stated.said.setdefault(
-                name, Said(text, f"stated in {header.line}", parts.name)
-            )
+            stated.said.setdefault(name, Said(text, f"stated in {header.line}", parts.name))
             found[header.column] = ConstantColumn(role, f"the {name.replace('_', ' ')} of the table: {text}")
     return found

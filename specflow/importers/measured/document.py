@@ -111,7 +111,9 @@ def _uncorrected(work: TableWork) -> Said:
     text = work.stated.text("corrections")
     if text and work.context.snapshot.find(Correction, text.split(",")[0].strip()) is not None:
         what = f"the correction {text} is not added to a matrix of S-parameters"
-        work.ask("correction", "", what, "de-embed it at the instrument, or derive the quantity and correct that")
+        work.ask(
+            "correction", "", what, "de-embed it at the instrument, or derive the quantity and correct that"
+        )
     return Said(corrections=tuple(filter(None, [text])))
 
 

@@ -179,7 +179,9 @@ class _Reader:
             return heading.ask(f"may be the condition {dimension.title} or a value of {title}", remedy)
         phase = phase_header(parts.name, unit.unit)
         if phase:
-            named_phase = name_quantity(read_header(phase), "", self._context.dictionary, self._context.planes)
+            named_phase = name_quantity(
+                read_header(phase), "", self._context.dictionary, self._context.planes
+            )
             quantity = named_phase if named_phase.candidates else quantity
         if quantity.candidates:
             return self._of_format(named_value(heading, quantity, unit, self._context, self._stated))
@@ -206,7 +208,9 @@ class _Reader:
             return meaning
         fits = [known_unit(read_header(one.text).unit or one.unit or "?") for one in self._table.headers]
         wanted = parse_unit(stated.unit)
-        if compatible(wanted, parse_unit(meaning.unit)) or any(one and compatible(one, wanted) for one in fits):
+        if compatible(wanted, parse_unit(meaning.unit)) or any(
+            one and compatible(one, wanted) for one in fits
+        ):
             return meaning
         return self._contradicted(meaning, stated)
 

@@ -80,8 +80,15 @@ def corrected_scans(work: TableWork, peaks: PeakList, applied: Sequence[AppliedC
                 continue
             most = _most_added(correction, scan)
             if most is None:
-                what = f"{name} does not reach over the scan from {scan.low / 1e6:g} to {scan.high / 1e6:g} MHz"
-                work.ask("floor", "", what, "state the floor over the range of the correction, or calibrate it further")
+                what = (
+                    f"{name} does not reach over the scan from {scan.low / 1e6:g} to {scan.high / 1e6:g} MHz"
+                )
+                work.ask(
+                    "floor",
+                    "",
+                    what,
+                    "state the floor over the range of the correction, or calibrate it further",
+                )
                 continue
             scans[place] = scan.model_copy(update={"floor": scan.floor + most})
             work.notes.append(f"the floor of {scan.floor:g} {scan.floor_unit} is {most:+g} dB with {name}")
@@ -150,7 +157,8 @@ def _with_floor(
     label = TextColumn(np.zeros(added, np.int32), (str(number),))
     unsaid = TextColumn(np.full(added, UNSTATED, np.int32), ())
     extra = {
-        name: _joined(words, label if name == LIST_COLUMN else unsaid) for name, words in columns.extra.items()
+        name: _joined(words, label if name == LIST_COLUMN else unsaid)
+        for name, words in columns.extra.items()
     }
     grown = EvidenceColumns(
         _conditions(columns.conditions, rows),

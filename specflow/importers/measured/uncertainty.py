@@ -231,7 +231,5 @@ def _level(entry: UncertaintyEntry, value: Registered, low: Floats) -> Floats | 
 
 
 def _asked(meaning: ColumnMeaning, what: str, remedy: str) -> Spread:
-    question = Question(
-        meaning.header.text, meaning.header.cell, f"{meaning.header.line}: {what}", remedy
-    )
+    question = Question(meaning.header.text, meaning.header.cell, f"{meaning.header.line}: {what}", remedy)
     return Spread(question=question)

@@ -65,11 +65,15 @@ def value_of(
         return heading.ask_unit(other, parameter.unit)
     if not unit.unit:
         return heading.ask_unit(
-            unit.problem or f"{parameter.title} without a unit", parameter.unit, "" if unit.problem else "unit"
+            unit.problem or f"{parameter.title} without a unit",
+            parameter.unit,
+            "" if unit.problem else "unit",
         )
     ratio = _other_ratio(heading, parameter)
     if ratio:
-        return heading.ask(ratio, 'export it in dB, or settle the parameter in a mapping: a ratio of its own kind')
+        return heading.ask(
+            ratio, "export it in dB, or settle the parameter in a mapping: a ratio of its own kind"
+        )
     density = density_of(parameter, unit.unit, context.dictionary)
     if density is not None:
         parameter, reason = density, f"{reason}, in {unit.unit} its density"

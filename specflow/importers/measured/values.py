@@ -150,7 +150,9 @@ def _spread(work: TableWork, value: ColumnMeaning, numbers: Numbers, conditions:
 def _registered(value: ColumnMeaning) -> Registered:
     parameter, quantity = value.parameter, value.quantity
     return Registered(
-        quantity.parameter if quantity else "", value.unit, None if parameter is None else parameter.log_factor
+        quantity.parameter if quantity else "",
+        value.unit,
+        None if parameter is None else parameter.log_factor,
     )
 
 
