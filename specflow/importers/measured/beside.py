@@ -118,8 +118,10 @@ def _are_two(left: Grid, right: Grid, context: Context) -> bool | Question:
     one, other = _at_same_height(ones, others)
     if one.header_row != other.header_row:
         return True
-    if _keys(one) & _keys(other) or _dimensions(one) & _dimensions(other):
+    if _dimensions(one) & _dimensions(other):
         return True
+    if _keys(one) & _keys(other):
+        return _begins_with_condition(other, context)
     if any(find_long(table, LayoutMapping(), context) is not None for table in (one, other)):
         return True
     if not _begins_with_condition(other, context):

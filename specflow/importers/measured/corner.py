@@ -19,6 +19,7 @@ from specflow.importers.measured.header_text import known_unit, read_header
 from specflow.importers.measured.mapping_parts import UNLOCATED, PivotMapping
 from specflow.importers.measured.quantity_text import NamedQuantity, name_quantity
 from specflow.importers.measured.result import Question
+from specflow.importers.measured.roles import role_of_words
 from specflow.importers.measured.statements import is_reading
 from specflow.importers.measured.tables import FoundTable, table_below
 from specflow.importers.readers import Grid, Value, is_blank
@@ -126,8 +127,10 @@ def _number_row(grid: Grid, top: int, row: int, context: Context) -> NumberRow |
 def _is_named(label: str, context: Context) -> bool:
     """Whether a corner says what runs down or across."""
     parts = [read_header(part) for part in _corner_parts(label)]
-    named = any(find_dimension(one.name) or is_unlocated_temperature(one.name) for one in parts)
-    return named or context.recognises(" ".join(label.split()))
+    if any(find_dimension(one.name) or is_unlocated_temperature(one.name) for one in parts):
+        return True
+    words = read_header(label)  # "Limit", "Mean" and the like stand before readings, not over them
+    return bool(words.unit) and role_of_words(words) is None and context.recognises(words.text)
 
 
 def _label_above(grid: Grid, top: int, row: int, before: int) -> tuple[int, str, int]:

@@ -9,6 +9,7 @@ from specflow.importers.measured.beside import strips_of
 from specflow.importers.measured.blocks import block_table, end_before_more, find_block, is_far_from
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.corner import find_number_row, next_number_row, table_under
+from specflow.importers.measured.long_form import is_long_header
 from specflow.importers.measured.sideways import find_sideways
 from specflow.importers.measured.tables import FoundTable, cut_table, find_header
 from specflow.importers.readers import CellRange, Grid
@@ -42,7 +43,7 @@ def _next(grid: Grid, top: int, context: Context) -> tuple[FoundTable, int] | No
     """The next table in the rows from ``top`` on, and the row below it."""
     header = find_header(grid, top, context.recognises)
     row = None if header is None else header.row
-    certain = header is not None and header.is_known
+    certain = header is not None and (header.is_known or is_long_header(header.texts))
     stop = grid.last_row + 1 if row is None or not certain else row
     block = None if certain and not grid.is_text else find_block(grid, top, grid.last_row + 1)
     is_only = not certain and block is None and top == grid.first_row
@@ -51,7 +52,7 @@ def _next(grid: Grid, top: int, context: Context) -> tuple[FoundTable, int] | No
         return side
     reach = grid.last_row + 1 if row is None else row + _ROWS_BELOW + 1
     numbers = find_number_row(grid, top, reach, context)
-    if numbers is not None:
+    if numbers is not None and not (certain and row is not None and row < numbers.row == numbers.label_row):
         return _ended(lambda cells: table_under(cells, top, numbers, context), grid, context)
     if (
         block is not None

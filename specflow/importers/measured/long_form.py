@@ -69,26 +69,36 @@ def long_parts(
     units = _column(table, long.unit) if long.unit else None
     if names is None or values is None or (long.unit and units is None):
         return [(replace(table, doubts=(*table.doubts, _no_column(table, long))), read_as)]
-    groups, nameless = _groups(table, names, values, units, read_as)
+    all_groups, nameless = _groups(table, names, values, units, read_as)
+    wanted = {header_key(one) for one in long.only}
+    groups = {one: rows for one, rows in all_groups.items() if not wanted or header_key(one[0]) in wanted}
+    left = [
+        f"{one[0]}: {len(rows)} rows, not read, as the mapping says"
+        for one, rows in all_groups.items()
+        if one not in groups
+    ]
     common, doubts = _conditions_among(table, groups, names, values, context)
     if nameless:
         doubts.append(_nameless(table, nameless, names))
-    wanted = {header_key(one) for one in long.only}
-    parts, left = [], []
+    parts = []
     for (name, unit), rows in groups.items():
-        if wanted and header_key(name) not in wanted:
-            left.append(f"{name}: {len(rows)} rows, not read, as the mapping says")
-            continue
-        if any(fact.row in rows for fact in common):
+        if _is_condition(name, unit, context):
             continue
         part = _part(table, long, name, unit, rows, (names, values, units))
-        parts.append((replace(part, facts=(*part.facts, *common)), _settled(read_as, long, part, values)))
+        part = replace(
+            part, facts=(*part.facts, *common), doubts=(*part.doubts, *doubts), notes=(*part.notes, *left)
+        )
+        parts.append((part, _settled(read_as, long, part, values)))
+        left = []  # said once
     if wanted and not parts:
-        doubts.append(_no_rows(table, groups, names))
-    if parts:
-        first = replace(parts[0][0], doubts=(*parts[0][0].doubts, *doubts), notes=(*parts[0][0].notes, *left))
-        parts[0] = (first, parts[0][1])
+        doubts.append(_no_rows(table, all_groups, names))
     return parts or [(replace(table, doubts=(*table.doubts, *doubts)), read_as)]
+
+
+def is_long_header(texts: Iterable[str]) -> bool:
+    """Whether these are the headers of a table with the quantity in the rows: "Parameter", "Value", "Unit"."""
+    keys = {header_key(text).replace(" ", "") for text in texts}
+    return bool(keys & (_NAMES | _PERHAPS_NAMES)) and bool(keys & _VALUES)
 
 
 def _only(table: FoundTable, words: frozenset[str]) -> HeaderCell | None:
@@ -148,22 +158,23 @@ def _conditions_among(
     values: HeaderCell,
     context: Context,
 ) -> tuple[list[Fact], list[Question]]:
-    """Rows that name a condition: once, it holds for all; more than once, nobody can say for which."""
+    """Rows that name a condition: above all quantities it holds for them; elsewhere nobody can say for which."""
     facts, doubts = [], []
-    for (name, unit), rows in groups.items():
-        dimension = find_dimension(read_header(name).name)
-        if dimension is None or _is_quantity(name, unit, context):
-            continue
+    conditions = {one: rows for one, rows in groups.items() if _is_condition(*one, context)}
+    first = min((rows[0] for one, rows in groups.items() if one not in conditions), default=0)
+    for (name, unit), rows in conditions.items():
         text = cell_text(table.grid.value(rows[0], values.column)).strip()
         cell = table.grid.address(rows[0], values.column)
-        if len(rows) == 1:
+        if len(rows) == 1 and rows[0] < first:
             facts.append(Fact(name, f"{text} {unit}".strip(), cell, rows[0]))
             continue
-        what = (
-            f"{name!r} stands in {len(rows)} rows among the quantities; for which rows it holds, nothing says"
-        )
+        what = f"{name!r} stands among the quantities ({cell}); for which rows it holds, nothing says"
         doubts.append(Question(name, cell, what, "give the condition a column of its own"))
     return facts, doubts
+
+
+def _is_condition(name: str, unit: str, context: Context) -> bool:
+    return find_dimension(read_header(name).name) is not None and not _is_quantity(name, unit, context)
 
 
 def _part(

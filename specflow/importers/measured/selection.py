@@ -93,6 +93,8 @@ def select_rows(
         if summary:
             modes = {one.column for one in meanings if one.role is Role.CONDITION and one.is_text}
             certain = [row for row in summary if _is_certain(table, row, modes)]
+            if 2 * len(certain) > len(rows):
+                certain = []  # then these words are what the table is about
             if certain:
                 notes.append(_summary_note(table, certain))
             marked = np.isin(rows, certain)

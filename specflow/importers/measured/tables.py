@@ -134,6 +134,7 @@ class HeaderRow:
 
     row: int
     is_known: bool
+    texts: tuple[str, ...]
 
 
 def find_tables(grid: Grid, recognises: Recognises) -> tuple[FoundTable, ...]:
@@ -185,10 +186,10 @@ def find_header(grid: Grid, top: int, recognises: Recognises) -> HeaderRow | Non
         if _are_headers(texts, recognises):
             if _is_above_headers(grid, row, recognises):
                 continue  # a pair of key and value, both of which happen to be known words
-            return HeaderRow(row, True)
+            return HeaderRow(row, True, tuple(texts.values()))
         if best is None or (known, len(texts)) > best[0]:
             best = (known, len(texts)), row
-    return None if best is None else HeaderRow(best[1], False)
+    return None if best is None else HeaderRow(best[1], False, tuple(_words(grid, best[1]).values()))
 
 
 def _are_headers(texts: dict[int, str], recognises: Recognises) -> bool:
