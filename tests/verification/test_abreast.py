@@ -189,3 +189,11 @@ def test_a_waiver_of_one_of_them_is_held_against_its_own_readings() -> None:
     found = statuses(snapshot_of(asked, some_evidence(columns), WAIVER), 256)
     assert found["R-0"].waived_by == ()
     assert found["R-1"].waived_by == ("W-1",)
+
+
+def test_a_converted_value_at_its_limit_keeps_its_slack_in_the_company_of_values_as_written() -> None:
+    volts = [20.1, 20.1, 20.1]
+    columns = {"Gain 0": volts, "Gain 1": volts, "Gain 2": [value * 1e-3 for value in volts]}
+    asked = [(at_most(20.1, "V"), DecisionRule(), "engineering")] * 3
+    found = statuses(snapshot_of(asked, some_evidence(columns)), 256)
+    assert [status.k for status in found.values()] == [3, 3, 3]
