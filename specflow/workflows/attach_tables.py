@@ -51,6 +51,8 @@ def preview_sentence(preview: AttachPreview) -> str:
     parts = [f"{len(new)} new table{'s' * (len(new) != 1)}", f"{preview.values} values"]
     made = preview.new_derived
     parts += [f"{made} derived table{'s' * (made != 1)}"] if made else []
+    failed = [one for tables in preview.planned.values() for one in tables if one.failure]
+    parts += [f"{len(failed)} not derived ({failed[0].plan.law}: {failed[0].failure})"] if failed else []
     questions = sum(len(table.questions) for table in preview.unresolved)
     parts += [f"{questions} open question{'s' * (questions != 1)}"] if questions else []
     parts += [f"{preview.rejected_cells} rejected"] if preview.rejected_cells else []

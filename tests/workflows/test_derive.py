@@ -21,6 +21,7 @@ from specflow.model.source_statement import PeakList
 from specflow.model.verdict import RequirementStatus, Standing, Verdict
 from specflow.store import ProjectStore, create_project
 from specflow.workflows.attach import AttachOptions, Decision, accept_attach, preview_attach
+from specflow.workflows.attach_tables import preview_sentence
 from specflow.workflows.derive import DeriveOptions, accept_derive, preview_derive
 from specflow.workflows.derive_again import derive_again, preview_again
 from specflow.workflows.derive_proposals import proposals
@@ -520,3 +521,14 @@ def test_the_sum_of_two_polarisations_is_of_neither(store: ProjectStore) -> None
     preview = preview_derive(store, DeriveOptions("power sum", ("T-7",), values=("V", "H")))
     assert preview.derivation.gives == a_quantity("eirp")
     assert preview.derived.columns.values["eirp"].low[0] == pytest.approx(30.4139, abs=1e-4)
+
+
+def test_a_law_that_gives_nothing_is_said_and_the_raw_data_comes_in(
+    store: ProjectStore, tmp_path: Path
+) -> None:
+    mapping = tmp_path / "m.toml"
+    mapping.write_text(MAPPING.replace("17.7..20.2", "17.0..20.2"), encoding="utf-8")
+    preview = preview_attach(store, sweep(tmp_path / "a.csv", 0.5), AttachOptions(mapping=mapping))
+    assert "1 not derived (ripple: the lower end is not reached" in preview_sentence(preview)
+    done = accept_attach(store, preview, Decision("A. B."))
+    assert list(done.tables) == ["EV-1"]
