@@ -7,8 +7,6 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from typing import Literal
 
-import numpy as np
-
 from specflow.budgets.allotment import Allotment, BlockParameter, key_of
 from specflow.budgets.apportion import apportion
 from specflow.budgets.children import child_ends
@@ -19,18 +17,16 @@ from specflow.budgets.probe import Probe
 from specflow.budgets.serving import targets_of_lines
 from specflow.changes import diff, due_revision
 from specflow.errors import DocumentError
-from specflow.limits import LimitContext, evaluate_limit, limit_difference, parse_limit
+from specflow.limits import limit_difference, parse_limit
 from specflow.model.base import Document, code_key
-from specflow.model.block import Block
 from specflow.model.budget import Allocation, Budget, Reserve, Sharing
 from specflow.model.change import Change
 from specflow.model.limit import Limit
-from specflow.model.requirement import Requirement, Source
+from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Snapshot
 from specflow.parameters import Dictionary
 from specflow.store import ProjectStore
-from specflow.workflows.allocated_limit import limit_text_of
-from specflow.workflows.allocated_quantity import quantity_of, sideband_words
+from specflow.workflows.allocated_requirement import limit_of, new_child
 from specflow.workflows.evaluate_project import project_dictionary
 from specflow.workflows.show_budget import budget_named
 
@@ -311,35 +307,17 @@ def _proposal(one: Allotment, parents: tuple[str, ...], probe: Probe, hand: ByHa
     parameter = probe.dictionary.get(one.parameter)
     known = _known_child(snapshot, budget, one, parents)
     kept = known.limit if one.is_kept and known is not None else None
-    proposed = kept or _limit_of(one, probe)
+    proposed = kept or limit_of(one, probe)
     given = proposed if hand is None else parse_limit(hand.limit, parameter=parameter, unit_hint=one.unit)
     difference = limit_difference(proposed, given) if hand is not None else ""
     reason = hand.reason if hand is not None and difference else ""
-    child = known or _new_child(one, parents, probe, parameter.title if parameter else one.parameter)
+    child = known or new_child(one, parents, probe, parameter.title if parameter else one.parameter)
     unlike = tuple(code for code in parents if code_key(code) not in set(map(code_key, child.parents)))
     same = known is not None and not limit_difference(known.limit, given)
     child = child.model_copy(
         update={"limit": child.limit if same else given, "parents": (*child.parents, *unlike)}
     )
     return Proposal(one, child, parents, proposed, given, known.limit if known else None, reason, difference)
-
-
-def _limit_of(one: Allotment, probe: Probe) -> Limit:
-    """Return an allotment as a limit. DocumentError where the limit would say something else than the allotment."""
-    limit = parse_limit(
-        limit_text_of(one, probe.chain.required), parameter=probe.dictionary.get(one.parameter)
-    )
-    if one.at is not None:
-        columns = probe.chain.required.columns
-        found = evaluate_limit(limit, LimitContext(columns, {}, columns.size)).spread(columns.size)
-        for side, told in zip(one.at, (found.lower, found.upper), strict=True):
-            known = np.isfinite(side)
-            if known.any() and (told is None or not np.allclose(told[known], side[known], rtol=0, atol=1e-9)):
-                raise DocumentError(
-                    f"the limit of {one.block} {one.parameter} by conditions cannot be written: {limit.text}",
-                    hint="share without --by-conditions",
-                )
-    return limit
 
 
 def _as_given(proposal: Proposal, probe: Probe) -> Allotment:
@@ -381,37 +359,9 @@ def _known_child(
     return found[0] if found else None
 
 
-def _new_child(one: Allotment, parents: Sequence[str], probe: Probe, title: str) -> Requirement:
-    snapshot, budget = probe.snapshot, probe.budget
-    block = snapshot.find(Block, one.block)
-    assert block is not None  # checked when the budget was read
-    points = probe.chain.required.points
-    quantity = quantity_of(one.key, probe, block)
-    return Requirement(
-        id=_free_id(snapshot, f"{block.id}-{one.parameter.upper().replace('_', '-')}"),
-        title=f"{title}{sideband_words(one.key, probe)} of {block.name}",
-        source=Source(document=f"Budget {budget.id}"),
-        parents=tuple(parents),
-        tier=block.tier,
-        owner=block.owner,
-        block=block.id,
-        quantity=quantity,
-        limit=_limit_of(one, probe),
-        conditions=points.conditions.id if points is not None else None,
-        rationale=one.words,
-    )
-
-
-def _free_id(snapshot: Snapshot, stem: str) -> str:
-    gone = snapshot.removed.get("requirement", frozenset())
-    code, number = stem, 1
-    while snapshot.find(Requirement, code) is not None or code_key(code) in gone:
-        number += 1
-        code = f"{stem}-{number}"
-    return code
-
-
-def _documents(snapshot: Snapshot, budget: Budget, proposals: Sequence[Proposal], sharing: Sharing) -> list[Document]:
+def _documents(
+    snapshot: Snapshot, budget: Budget, proposals: Sequence[Proposal], sharing: Sharing
+) -> list[Document]:
     revision = due_revision(snapshot.find(Budget, budget.id), budget) or budget.revision
     documents: list[Document] = [one.child for one in proposals]
     for one in proposals:
