@@ -25,7 +25,7 @@ from specflow.model.columns import UNSTATED, Columns, TextColumn
 from specflow.model.correction import AppliedCorrection, Correction
 from specflow.model.evidence import EvidenceColumns, SpectrumKind, ValueArrays, ValueColumn
 from specflow.model.source_statement import LIST_COLUMN, PEAK, PeakList, PeakScan
-from specflow.units import parse_unit
+from specflow.units import converter, parse_unit
 
 AXIS = "frequency"
 _LIST = re.compile(
@@ -62,7 +62,8 @@ def read_peak_list(work: TableWork, title: str) -> PeakList | None:
     try:
         scans = read_scans(text, stated.text("floor"), stated.text("bandwidth"))
     except UnitError as error:
-        work.ask("scanned", "", error.message, error.hint or 'say --state scanned="30 MHz to 1 GHz"')
+        cell = stated.by("scanned").removeprefix("stated in ") if " in " in stated.by("scanned") else ""
+        work.ask("scanned", cell, error.message, error.hint or 'say --state scanned="30 MHz to 1 GHz"')
         return PeakList()
     work.notes.append(f"a list of peaks, {'; '.join(map(_scan_words, scans))}")
     if any(scan.floor is None for scan in scans):
@@ -126,6 +127,7 @@ def with_floors(
     """Add the floor rows to a list; a floor that cannot be held against the levels is asked about."""
     kinds = {(one.quantity.parameter, one.quantity.plane, one.quantity.statistic, one.unit) for one in values}
     floors = [(number, scan) for number, scan in enumerate(peaks.scans, 1) if scan.floor is not None]
+    _note_strange_peaks(work, peaks, columns, values)
     words = TextColumn(np.zeros(columns.conditions.size, np.int32), (PEAK,))
     marked = replace(columns, extra={**columns.extra, LIST_COLUMN: words})
     if not floors:
@@ -138,6 +140,36 @@ def with_floors(
         found = _with_floor(work, number, scan, marked, values)
         marked, values = found.columns, found.values
     return WithFloors(marked, values)
+
+
+def _note_strange_peaks(
+    work: TableWork, peaks: PeakList, columns: EvidenceColumns, values: list[ValueColumn]
+) -> None:
+    """Say which peaks lie outside what was scanned, or under its floor: the list, or what is said of it, is wrong."""
+    frequency = columns.conditions.numeric.get(AXIS)
+    if frequency is None or not peaks.scans:
+        return
+    unit = parse_unit(columns.conditions.units.get(AXIS, "Hz"))
+    hertz = np.asarray(converter(unit, parse_unit("Hz"))(frequency), np.float64)
+    inside = np.zeros(len(hertz), bool)
+    under = np.zeros(len(hertz), bool)
+    for scan in peaks.scans:
+        within = (hertz >= scan.low * (1 - 1e-9)) & (hertz <= scan.high * (1 + 1e-9))
+        inside |= within
+        for value in values if scan.floor is not None else ():
+            written, unit = parse_unit(scan.floor_unit), parse_unit(value.unit)
+            if scan.floor is not None and brought(written, unit):
+                under |= within & (columns.values[value.name].high < to_unit(scan.floor, written, unit))
+    for which, words in (
+        (~inside & ~np.isnan(hertz), "outside what was scanned"),
+        (under, "under the floor"),
+    ):
+        rows = columns.source_rows[np.flatnonzero(which)]
+        if len(rows):
+            count = f"{len(rows)} peaks lie" if len(rows) > 1 else "a peak lies"
+            work.notes.append(
+                f"{count} {words} (row {int(rows[0])}): the list, or what is said of its scan, is wrong"
+            )
 
 
 def _with_floor(

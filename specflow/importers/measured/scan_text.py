@@ -39,7 +39,7 @@ def _said(text: str) -> SaidScan:
     found = _RANGE.match(_MORE.sub("", text).strip())
     if found is None:
         raise UnitError(f"{text!r} is no range that was scanned", hint="write it like 30 MHz to 1 GHz")
-    high = parse_quantity(found["high"])
+    high = _named("upper end", found["high"])
     low_text = found["low"] if not re.fullmatch(r"[\d.,\s]+", found["low"]) else f"{found['low']} {high.unit}"
     floor = re.search(r"floor\s*[:=]?\s*(?P<floor>[^,;]+)", more, re.IGNORECASE)
     bandwidth = re.search(
@@ -60,15 +60,22 @@ def _scan(said: SaidScan, floor: str, bandwidth: str) -> PeakScan:
             f"the scan from {low:g} to {high:g} Hz runs downwards", hint="write the lower end first"
         )
     floor_text, rbw = said.floor or floor, said.bandwidth or bandwidth
-    level = parse_quantity(floor_text.lstrip("<≤ ")) if floor_text else None
+    level = _named("floor", floor_text.lstrip("<≤ ")) if floor_text else None
     return PeakScan(
         low=low,
         high=high,
         unit="Hz",
         floor=None if level is None else float(level.value),
         floor_unit="" if level is None else format_unit(level.unit),
-        bandwidth_hz=_hertz(parse_quantity(rbw)) if rbw else None,
+        bandwidth_hz=_hertz(_named("bandwidth", rbw)) if rbw else None,
     )
+
+
+def _named(what: str, text: str) -> Quantity:
+    try:
+        return parse_quantity(text)
+    except UnitError as error:
+        raise UnitError(f"the {what} of the scan, {error.message}", hint=error.hint) from None
 
 
 def _hertz(quantity: Quantity) -> float:

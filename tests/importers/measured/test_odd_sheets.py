@@ -203,6 +203,18 @@ TAKEN = {
         said={"scaled": "yes"},
         words=["the readings are taken as they stand"],
     ),
+    "peaks that cannot be": Taken(
+        [
+            ["Peak list"],
+            ["Scanned range", "30 MHz to 1 GHz (floor -85 dBm)"],
+            [],
+            ["No", "Frequency (MHz)", "Spurious (dBm)"],
+            [1, 2000, -60],
+            [2, 100, -90],
+        ],
+        {"Spurious": [-60, -90, -np.inf]},
+        words=["a peak lies outside what was scanned (row 5)", "a peak lies under the floor (row 6)"],
+    ),
     "the plane of a cut": Taken(
         [["Cut: phi = 90 deg"], ["Angle (deg)", "Gain (dBi)"], [0, 20], [1, 19.9]],
         {"Gain": [20, 19.9]},
@@ -233,6 +245,18 @@ ASKED = {
         under(["Gain (dB)"], [0, -1, -2], above=[["Normalised to peak: 32.1 dBi"]]),
         "A1",
         "Normalised to peak",
+    ),
+    "a floor without its unit": Asked(
+        [
+            ["Peak list"],
+            ["Scanned range", "30 MHz to 1 GHz"],
+            ["Noise floor", -85],
+            [],
+            ["No", "Frequency (MHz)", "Spurious (dBm)"],
+            [1, 100, -60],
+        ],
+        "B2",
+        "the floor of the scan, '-85' has no unit",
     ),
     "a ratio of voltages under a gain": Asked(
         under(["Gain (V/V)"], [10, 11, 12]), "B1", "V/V is a ratio of amplitudes, Gain is one of powers"
@@ -307,7 +331,7 @@ ASKED = {
             ["No", "Frequency (MHz)", "Spurious (dBm)"],
             [1, 100, -60],
         ],
-        "",
+        "B2",
         "runs downwards",
     ),
 }
