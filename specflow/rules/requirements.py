@@ -26,11 +26,13 @@ def unverified(facts: Facts) -> Iterator[Found]:
     """
     for requirement, status in facts.defined:
         if has_no_evidence(status) and facts.is_planned(requirement):
-            yield Found(
-                requirement.id,
-                f"no evidence at any of {counted(status.n, 'required point')}",
-                origin=requirement.origin,
-            )
+            near = [
+                f"{one.column} of {one.table} does not count: {one.what}"
+                for one in status.mismatches
+                if one.column
+            ]
+            words = "; ".join([f"no evidence at any of {counted(status.n, 'required point')}", *near[:1]])
+            yield Found(requirement.id, words, origin=requirement.origin)
 
 
 def partially_verified(facts: Facts) -> Iterator[Found]:
