@@ -240,6 +240,31 @@ def test_a_stacked_value_is_traced_to_its_own_cell(store: ProjectStore, tmp_path
     assert [place.cell for place in places if place] == ["B2", "C2"]
 
 
+def test_a_value_of_a_turned_table_is_traced_to_its_own_cell(store: ProjectStore, tmp_path: Path) -> None:
+    rows = [["Item", "LNA-1", "LNA-2"], ["f (GHz)", 27.5, 27.5], ["Gain (dB)", 20, 21], ["NF (dB)", 1.5, 1.6]]
+    attached(store, book(tmp_path / "turned.xlsx", rows))
+    finder = OriginFinder(store.load())
+    places = [finder.origin(RecordRef("EV-1", "NF", row)) for row in (0, 1)]
+    assert [place.cell for place in places if place] == ["B4", "C4"]
+    assert preview_attach(store, tmp_path / "turned.xlsx", AttachOptions()).is_unchanged
+
+
+def test_a_table_by_its_area_is_known_again(store: ProjectStore, tmp_path: Path) -> None:
+    rows = [["Bench 3"], [None, "reading", "x"], ["LNA-1", 20, 27.5]]
+    mapping = tmp_path / "m.toml"
+    mapping.write_text(
+        'format = 1\n[[table]]\narea = "A2:C9"\nalone = true\n[[table.column]]\ncolumn = "A"\nrole = "item"\n'
+        '[[table.column]]\nheader = "reading"\nparameter = "gain"\nunit = "dB"\n'
+        '[[table.column]]\nheader = "x"\ndimension = "frequency"\nunit = "GHz"\n',
+        encoding="utf-8",
+    )
+    attached(store, book(tmp_path / "first.xlsx", rows), mapping=mapping)
+    rows[2] = ["LNA-2", 21, 28]
+    preview = preview_attach(store, book(tmp_path / "second.xlsx", rows), AttachOptions())
+    assert preview.values == 1 and not preview.unresolved
+    assert "recognised by its layout" in preview.measurements.tables[0].mapping_from
+
+
 def test_a_mapping_that_is_not_there_is_named(store: ProjectStore, tmp_path: Path) -> None:
     with pytest.raises(FileError, match="cannot be read") as caught:
         preview_attach(store, book(tmp_path / "a.xlsx", FIRST), AttachOptions(mapping=tmp_path / "no.toml"))
