@@ -68,7 +68,7 @@ def differing_cells(
         other = again.get((one.name, one.standard))
         found = _unequal(one, other)
         count += len(found)
-        listed += [_told(one, other, key) for key in found[: MOST_LISTED - len(listed)].tolist()]
+        listed += [_told(before, one, other, key) for key in found[: MOST_LISTED - len(listed)].tolist()]
         if other is not None and not one.standard and not one.is_condition:
             here = other.keys[~np.isnan(other.low)]
             added += int(np.count_nonzero(~np.isin(here, one.keys[~np.isnan(one.low)])))
@@ -122,8 +122,8 @@ def _unequal(one: _Numbers, other: _Numbers | None) -> Keys:
     return one.keys[here & ~same]
 
 
-def _told(one: _Numbers, other: _Numbers | None, key: int) -> CellDifference:
-    row, column = divmod(key, _COLUMNS)
+def _told(table: EvidenceTable, one: _Numbers, other: _Numbers | None, key: int) -> CellDifference:
+    row, column = table.cell(*divmod(key, _COLUMNS))
     now = "no such column" if other is None else _text(other, key)
     return CellDifference(f"{column_letters(column)}{row}", one.what, _text(one, key), now)
 
