@@ -11,12 +11,14 @@ from specflow.model.evidence import EvidenceTable
 from specflow.model.finding import Severity
 from specflow.workflows.attach_preview import AttachPreview, Decision
 from specflow.workflows.earlier_tables import Replacement
+from specflow.workflows.kept_copy import keeps_copy
 from specflow.workflows.subjects import not_found
 
 
 def check_acceptable(preview: AttachPreview, decision: Decision) -> Mapping[int, Sequence[Replacement]]:
     """Return the replacements that the person named; raises DocumentError when the preview may not be accepted so."""
     _refuse_unsettled(preview, decision)
+    keeps_copy(preview, asked=decision.keep)
     return _refuse_unsaid(preview, decision)
 
 

@@ -20,6 +20,7 @@ from specflow.model.bench_sheet import BenchCondition, BenchPoint
 from specflow.model.requirement import Activity, Method, Requirement
 from specflow.model.snapshot import Snapshot
 from specflow.model.verdict import ActivityResult, CloseOut, Label, PointResults, RequirementStatus, Verdict
+from specflow.parameters import suits
 from specflow.reports.points import absent_provers, is_prover, points_of, points_per_item
 from specflow.units import Quantity, format_unit, parse_unit, tolerance_unit
 from specflow.verification.limit_inputs import limit_columns
@@ -107,6 +108,7 @@ class _Requirement:
         self._status = evaluation.results.of(requirement.id)
         self._scope = scope
         self._declared = declared
+        self._dictionary = evaluation.dictionary
         self._points = points_of(evaluation.snapshot, requirement)
 
     def collect(self, missing: Missing) -> None:
@@ -184,7 +186,7 @@ class _Requirement:
 
     def _add(self, place: Place, activity: Activity, missing: Missing) -> None:
         requirement = self._requirement
-        unit = format_unit(parse_unit(requirement.limit.unit or "1"))
+        unit = self._unit()
         expanded = conditions_at(self._points, place.point)
         if isinstance(expanded, str):
             missing.leave_out(requirement, f"{expanded}; attach a trace over it")
@@ -206,6 +208,14 @@ class _Requirement:
                     why=(place.why,),
                 )
             )
+
+    def _unit(self) -> str:
+        """The unit of the limit; that of the parameter where it has none of its own (alternatives in several)."""
+        unit = self._requirement.limit.unit
+        parameter = self._dictionary.get(self._requirement.quantity.parameter)
+        if parameter is not None and not suits(parameter, unit or "1"):
+            unit = parameter.unit
+        return format_unit(parse_unit(unit or "1"))
 
     def _limit(self, point: int, conditions: Sequence[BenchCondition]) -> str:
         """The limit at one point in words: its bounds there, or the whole of it where it has none by itself."""

@@ -621,6 +621,22 @@ def test_any_protected_cell_that_is_edited_is_found(
     assert bool(found) is not same, (cell, entry)
 
 
+def test_a_limit_of_several_units_is_measured_in_that_of_its_parameter(
+    store: ProjectStore, tmp_path: Path
+) -> None:
+    either = "spurious_relative <= -60 dBc or <= -30 dBm, whichever is looser"
+    quantity = a_quantity("spurious_emission", bandwidth_hz=100e3)
+    store.apply(
+        adding(requirement("S-1", either, "spurious_emission", block="PA", quantity=quantity)), by="A. B."
+    )
+    [unit] = {point.unit for point in points(made(store, requirements=["S-1"]))}
+    assert unit == "dBm"
+    path = written(store, tmp_path / "t.xlsx", requirements=["S-1"])
+    attach(store, fill(path, lambda row: {"Value": -50, "U (k = 2)": 1, "Item": "PA-1"}))
+    status = evaluate_project(store, AS_OF).results.of("S-1")
+    assert (status.k, status.n) == (12, 12)
+
+
 def test_an_error_and_a_formula_without_a_value_are_no_empty_cells(
     store: ProjectStore, tmp_path: Path
 ) -> None:
