@@ -171,6 +171,12 @@ def _validate(worksheet: Worksheet, cell: BenchCell, lists: Mapping[str, str], i
         },
     }
     rule = rules.get(cell.kind)
+    if cell.kind == "range" and cell.low is None:
+        rule = {
+            "validate": "any",
+            "input_title": "Write down what it was",
+            "input_message": "the limit needs it",
+        }
     if rule is not None and rule.get("source", "given"):
         worksheet.data_validation(cell.row - 1, cell.column - 1, cell.row - 1, cell.column - 1, rule)
 

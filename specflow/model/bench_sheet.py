@@ -30,7 +30,10 @@ NOTHING_FILLED_IN = "attach-test-sheet-empty"  # the rule of the finding about a
 
 
 class BenchCondition(Document):
-    """What a row asks of one dimension: a value, a word, or any value from ``low`` to ``high``, which is filled in."""
+    """What a row asks of one dimension: a value, a word, or any value from ``low`` to ``high``, which is filled in.
+
+    With neither, it is not required and only to be noted, because the limit depends on it.
+    """
 
     dimension: str
     unit: str = ""

@@ -47,7 +47,8 @@ GUIDE = (
     "equipment, and a remark. Leave the value empty where nothing was measured; a half-filled sheet may be attached, "
     "and filled in further later.",
     "A value counts at the conditions that its row states. What was measured at others does not belong here: attach it "
-    "as a file of its own.",
+    "as a file of its own. Where a condition is yellow, any value (within the range that is shown) will do: write down "
+    "which it was.",
     "All other cells are protected, without a password, so that nothing is changed by accident: requirement, quantity, "
     "conditions, limit and unit of a row belong together. A protected cell that was edited is found when the sheet is "
     "attached, and the sheet is refused with the cell named. Rows are not to be added, deleted or sorted.",

@@ -3,14 +3,16 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
+from collections.abc import Container, Sequence
 from itertools import product
 
 import numpy as np
 
-from specflow.conditions import Points
+from specflow.conditions import Points, find_dimension
+from specflow.limits.tree import tree_names
 from specflow.model.bench_sheet import BenchCondition
 from specflow.model.columns import Columns, TextColumn
+from specflow.model.limit import Limit
 from specflow.units import format_value
 
 MOST_OF_A_RANGE = (
@@ -46,6 +48,22 @@ def conditions_at(points: Points | None, place: int) -> list[tuple[BenchConditio
         if words.word(place):
             parts.append([BenchCondition(dimension=name, word=words.word(place))])
     return [tuple(one) for one in product(*parts)]
+
+
+def inputs_to_note(
+    limit: Limit, conditions: Sequence[BenchCondition], declared: Container[str]
+) -> list[BenchCondition]:
+    """Return what a limit depends on and its conditions do not say: the bench writes down what it was.
+
+    A limit that holds above a power level cannot be judged for a value that does not state its level.
+    """
+    known = {one.dimension for one in conditions}
+    noted: dict[str, BenchCondition] = {}
+    for name in sorted(tree_names(limit.tree)):
+        dimension = None if name in declared or name in known else find_dimension(name)
+        if dimension is not None and dimension.name not in known:
+            noted[dimension.name] = BenchCondition(dimension=dimension.name, unit=dimension.unit)
+    return list(noted.values())
 
 
 def recorded_columns(conditions: Sequence[BenchCondition]) -> Columns:

@@ -24,7 +24,7 @@ from specflow.parameters import suits
 from specflow.reports.points import absent_provers, is_prover, points_of, points_per_item
 from specflow.units import Quantity, format_unit, parse_unit, tolerance_unit
 from specflow.verification.limit_inputs import limit_columns
-from specflow.workflows.bench_rows import bounds_words, conditions_at, recorded_columns
+from specflow.workflows.bench_rows import bounds_words, conditions_at, inputs_to_note, recorded_columns
 from specflow.workflows.evaluate_project import Evaluation
 
 ON_A_BENCH = (Method.TEST, Method.DEMONSTRATION, Method.INSPECTION)
@@ -191,7 +191,8 @@ class _Requirement:
         if isinstance(expanded, str):
             missing.leave_out(requirement, f"{expanded}; attach a trace over it")
             return
-        for conditions in expanded:
+        for required in expanded:
+            conditions = (*required, *inputs_to_note(requirement.limit, required, self._declared))
             missing.points.append(
                 BenchPoint(
                     block=requirement.block,

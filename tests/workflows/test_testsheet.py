@@ -637,6 +637,18 @@ def test_a_limit_of_several_units_is_measured_in_that_of_its_parameter(
     assert (status.k, status.n) == (12, 12)
 
 
+def test_what_a_limit_depends_on_and_is_not_required_is_noted_by_the_bench(
+    store: ProjectStore, tmp_path: Path
+) -> None:
+    store.apply(adding(requirement("A-1", ">= 26 dB if power_level > 20 dBm", conditions=None)), by="A. B.")
+    path = written(store, tmp_path / "t.xlsx", requirements=["A-1"])
+    fill(path, lambda row: {"Value": 30, "Item": "LNA-1"})
+    assert "does not say at which power level" in look(store, path).measurements.tables[0].rejected[0].reason
+    fill(path, lambda row: {"Power level (dBm)": 23})
+    attach(store, path)
+    assert evaluate_project(store, AS_OF).results.of("A-1").k == 1
+
+
 def test_an_error_and_a_formula_without_a_value_are_no_empty_cells(
     store: ProjectStore, tmp_path: Path
 ) -> None:
