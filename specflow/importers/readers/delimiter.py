@@ -154,5 +154,7 @@ def _refuse_decimal_comma(sample: Sequence[str], width: int) -> None:
         return
     titles = [row for row in rows if not any(map(is_number, row))]
     whole = all(re.fullmatch(r"[+\-−]?[0-9]+", field) for row in body for field in row)
+    if whole and width == 2 and not titles and len(rows) < len(sample):
+        raise AmbiguousComma  # headers parted by another mark, and "1,5" below: two fields, or a decimal
     if whole and titles and (len(titles[-1]) == width / 2 or 2 <= len(titles[-1]) < width):
         raise AmbiguousComma
