@@ -111,6 +111,12 @@ def _spans_within(axis: Axis, records: Columns) -> Spans | None:
     return Spans(low, high, spans.gap, axis.unit)
 
 
+def speaks_for(axis: Axis, records: Columns) -> NDArray[np.bool_]:
+    """Return which records speak for an axis that is a range, or a part of it."""
+    spans = _spans_within(axis, records) if records.spans else None
+    return np.zeros(records.size, np.bool_) if spans is None else ~np.isnan(spans.low)
+
+
 def _with_extents(points: Points, records: Columns, found: Matching) -> Matching:
     """Add how far along the range each record speaks, and which prove no part of it."""
     axis = points.range_axis

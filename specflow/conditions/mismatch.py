@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 from specflow.conditions.axes import Floats
 from specflow.conditions.dimensions import is_unlocated_temperature, known_dimension
 from specflow.conditions.directions import ANGLE_UNIT, CutAxis, DirectionAxis, angles_between
-from specflow.conditions.match import Matching
+from specflow.conditions.match import Matching, speaks_for
 from specflow.conditions.points import Points
 from specflow.conditions.proof import range_gaps
 from specflow.conditions.recorded import recorded_numbers, recording_note
@@ -84,9 +84,9 @@ def _off(points: Points, place: int, point: int, records: Columns) -> Floats:
     axis = points.axes[place]
     seen = axis.read(records)
     if seen is None:
-        return np.full(records.size, np.inf)
+        return np.where(speaks_for(axis, records), 0.0, np.inf)
     code = np.full(records.size, points.codes[place][point])
-    served = np.isfinite(axis.closeness(seen, code))
+    served = np.isfinite(axis.closeness(seen, code)) | speaks_for(axis, records)
     distance = np.ones(records.size)
     for name in axis.names:
         required = points.columns_lo.numeric.get(name)
@@ -138,6 +138,9 @@ def _mismatch_of(points: Points, name: str, point: int, records: Columns, row: i
     low, high = float(points.columns_lo.numeric[name][point]), float(points.columns_hi.numeric[name][point])
     asked = ends_words(name, points.columns_lo, points.columns_hi, point)
     actual = recorded_numbers(records, name, unit)
+    spoken = _spoken_words(points, name, asked, records, row)
+    if spoken is not None:
+        return spoken
     if actual is None or actual[row] != actual[row]:
         note = recording_note(records, name, unit) if actual is None else ""
         return note or _unstated_words(name, asked, records)
@@ -148,6 +151,19 @@ def _mismatch_of(points: Points, name: str, point: int, records: Columns, row: i
     allowed = _allowed_words(points, name)
     relation = "is not within" if low != high else "is not"
     return f"{value_words(name, value, unit)} {relation} {asked} (off by {difference_words(away, unit)}, {allowed})"
+
+
+def _spoken_words(points: Points, name: str, asked: str, records: Columns, row: int) -> str | None:
+    """Say over which range a record was derived where that is not what is asked, "" where it is, None for others."""
+    spans = records.spans.get(name)
+    if spans is None or np.isnan(spans.low[row]):
+        return None
+    axis = next(axis for axis in points.axes if name in axis.names)
+    if speaks_for(axis, records)[row]:
+        return ""
+    over = range_words(name, float(spans.low[row]), float(spans.high[row]), spans.unit)
+    gap = difference_words(float(spans.gap[row]), spans.unit)
+    return f"derived over {over} with gaps up to {gap}, {asked} is asked"
 
 
 def _allowed_words(points: Points, name: str) -> str:

@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
+from specflow.conditions.spans import speaking
 from specflow.model.base import code_key
 from specflow.model.evidence import SOURCE_COLUMN, EvidenceColumns, EvidenceFile, EvidenceTable, ValueColumn
 from specflow.model.origin import Origin, column_number
@@ -33,15 +36,19 @@ class OriginFinder:
         """Return the arrays of a table."""
         key = code_key(table)
         if key not in self._columns:
-            self._columns[key] = next(iter(self._snapshot.load_columns([table]).values()))
+            self._keep(self._snapshot.load_columns([table]))
         return self._columns[key]
+
+    def _keep(self, loaded: Mapping[str, EvidenceColumns]) -> None:
+        for code, columns in loaded.items():
+            covers = self.table(code).covers
+            self._columns[code_key(code)] = speaking(covers, columns) if covers else columns
 
     def fetch(self, tables: set[str]) -> None:
         """Fetch the arrays of many tables in one go."""
         wanted = [table for table in sorted(tables) if code_key(table) not in self._columns]
         if wanted:
-            for table, columns in self._snapshot.load_columns(wanted).items():
-                self._columns[code_key(table)] = columns
+            self._keep(self._snapshot.load_columns(wanted))
 
     def origin(self, record: RecordRef | None) -> Origin | None:
         """Return the place of a record, or None without one."""

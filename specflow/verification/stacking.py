@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -11,8 +10,6 @@ from numpy.typing import NDArray
 from specflow.conditions.recorded import spans_in
 from specflow.errors import UnitError
 from specflow.model.columns import UNSTATED, Columns, Spans, TextColumn
-from specflow.model.derivation import Covered
-from specflow.model.evidence import EvidenceColumns
 from specflow.units import convert, parse_unit
 
 
@@ -57,22 +54,6 @@ def _flags(parts: Sequence[NDArray[np.bool_] | None], sizes: Sequence[int]) -> N
         return None
     filled = (np.zeros(size, bool) if part is None else part for part, size in zip(parts, sizes, strict=True))
     return np.concatenate(list(filled))
-
-
-def speaking(covers: Sequence[Covered], columns: EvidenceColumns) -> EvidenceColumns:
-    """Return the arrays of a derived table with the ranges that its rows speak for."""
-    size = columns.conditions.size
-    spans = {
-        one.dimension: Spans(
-            np.full(size, one.low),
-            np.full(size, one.high),
-            np.full(size, one.largest_gap),
-            one.unit,
-            undivided=None if one.in_parts else np.ones(size, bool),
-        )
-        for one in covers
-    }
-    return replace(columns, conditions=replace(columns.conditions, spans=spans))
 
 
 def stack_words(columns: Sequence[TextColumn]) -> TextColumn:

@@ -18,6 +18,7 @@ from numpy.typing import NDArray
 from specflow.conditions.expand import expand
 from specflow.conditions.match import Matching, match
 from specflow.conditions.points import Points
+from specflow.conditions.spans import speaking
 from specflow.errors import ConditionsError, UnitError
 from specflow.limits import LimitContext, evaluate_limit
 from specflow.model.base import code_key
@@ -41,7 +42,7 @@ from specflow.verification.map_choice import MapChoice
 from specflow.verification.peak_lists import scanned
 from specflow.verification.records import Held, Records, SourceColumn, gather, no_records
 from specflow.verification.residuals import Residuals
-from specflow.verification.stacking import speaking, stack
+from specflow.verification.stacking import stack
 from specflow.verification.standing import RowStanding, StandingRegister
 
 #: The one point of a requirement without a conditions set: every record serves it.

@@ -155,6 +155,8 @@ def test_a_part_of_the_range_or_too_wide_a_step_proves_nothing(
     found = status(store, "R-1")
     assert found.k == 0
     assert any(why in mismatch.what for mismatch in found.mismatches)
+    told = [cell.text for row in trace(store, DAY, "R-1").rows for cell in row.cells]
+    assert any(f"{why.removeprefix('derived over ')}" in text and "is asked" in text for text in told)
 
 
 def test_two_ripples_over_halves_are_none_over_the_whole(store: ProjectStore) -> None:
