@@ -2,8 +2,9 @@
 
 What may live here: the readers (``xlsx``, ``xls``, ``ods``, ``csv``, ``json_lines``, ``html``), what they give
 (``grid``, ``stores``), the bytes they take (``source``, ``contents``), and the parts of one reader that have a name of
-their own (the zip archive, the scan of sheet XML, the delimiter). A reader takes a Source and returns grids, raises FileError for a file that cannot be read, and never reports on a cell: odd
-cells are data in the grid. A new format is one module and one line in ``READERS``.
+their own (the zip archive, the scan of sheet XML, the delimiter). A reader takes a Source and returns grids, raises
+FileError for a file that cannot be read, and never reports on a cell: odd cells are data in the grid. A new format is
+one module and one line in ``READERS``.
 """
 
 from __future__ import annotations
@@ -16,24 +17,13 @@ from typing import overload
 from specflow.errors import FileError
 from specflow.importers.readers.contents import Content, content_of
 from specflow.importers.readers.csv import read_csv
-from specflow.importers.readers.grid import (
-    CellRange,
-    Grid,
-    OddCell,
-    OddCells,
-    OddKind,
-    OddRun,
-    address,
-    column_letter,
-    column_number,
-    is_blank,
-    looks_numeric,
-    sheet,
-)
+from specflow.importers.readers.grid import Grid, is_blank, looks_numeric, sheet
 from specflow.importers.readers.html import read_html
 from specflow.importers.readers.inspection import comments, formulas
 from specflow.importers.readers.json_lines import read_json_lines
+from specflow.importers.readers.odd_cells import OddCell, OddCells, OddKind, OddRun
 from specflow.importers.readers.ods import read_ods
+from specflow.importers.readers.places import CellRange, address, column_letter, column_number
 from specflow.importers.readers.source import FileFingerprint, Source, read_source
 from specflow.importers.readers.stores import Value
 from specflow.importers.readers.xls import read_xls
@@ -127,16 +117,16 @@ def open_grids(path: str | Path, expected: FileFingerprint | None = None) -> Gri
         return GridFile(source.fingerprint, tuple(named.read(source)))
     true = next(reader for reader in reversed(READERS) if reader.content is content)
     grids = true.read(source)
-    if content is Content.TEXT and (grids[0].last_column < 2 or len(grids[0].rows) < 2 or not _is_clean(source)):
+    if content is Content.TEXT and (
+        grids[0].last_column < 2 or len(grids[0].rows) < 2 or not _is_clean(source)
+    ):
         raise FileError(
             f"this is {content} without a table, and not what its ending says",
             where=path.name,
             hint="give it its true ending, or export it again",
         )
     note = f"its ending is {ending}, but the file is {content}, and was read so"
-    return GridFile(
-        source.fingerprint, tuple(replace(grid, notes=(note, *grid.notes)) for grid in grids)
-    )
+    return GridFile(source.fingerprint, tuple(replace(grid, notes=(note, *grid.notes)) for grid in grids))
 
 
 def _is_clean(source: Source) -> bool:

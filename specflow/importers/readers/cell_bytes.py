@@ -17,7 +17,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.importers.readers.cell_events import MAX_COLUMN, MAX_ROW, NEVER_CALCULATED, SheetProblem
-from specflow.importers.readers.grid import OddCell, OddKind
+from specflow.importers.readers.odd_cells import OddCell, OddKind
 from specflow.importers.readers.odd_marks import OddMarks
 from specflow.importers.readers.styles import Styles
 

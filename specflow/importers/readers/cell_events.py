@@ -5,8 +5,9 @@ from __future__ import annotations
 import re
 from xml.parsers import expat
 
-from specflow.importers.readers.grid import CellRange, OddCell, OddKind, column_number
+from specflow.importers.readers.odd_cells import OddCell, OddKind
 from specflow.importers.readers.odd_marks import OddMarks
+from specflow.importers.readers.places import CellRange, column_number
 from specflow.importers.readers.styles import Styles
 
 MAX_ROW, MAX_COLUMN = 1_048_576, 16_384

@@ -19,7 +19,8 @@ from numpy.typing import NDArray
 from specflow.importers.readers.cell_bytes import Cells, Flags, Irregular, Places
 from specflow.importers.readers.cell_events import SheetProblem
 from specflow.importers.readers.date_serials import from_serial, is_duration
-from specflow.importers.readers.grid import CellRange, OddKind
+from specflow.importers.readers.odd_cells import OddKind
+from specflow.importers.readers.places import CellRange
 from specflow.importers.readers.shared_texts import plain_text
 from specflow.importers.readers.stores import Codes, Floats, TypedColumn, TypedColumns, Value
 from specflow.importers.readers.styles import Styles

@@ -8,17 +8,17 @@ sheet has millions of them, in a CellStore (``stores``), which is asked by colum
 from __future__ import annotations
 
 import re
-from bisect import bisect_right
-from collections.abc import Iterable, Iterator, Mapping, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from datetime import date, datetime, time, timedelta
-from enum import StrEnum
 from typing import TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
 
 from specflow.errors import FileError
+from specflow.importers.readers.odd_cells import OddCell, OddCells, OddKind, OddRun
+from specflow.importers.readers.places import CellRange, address, column_letter
 from specflow.importers.readers.stores import CellStore, Value
 
 T = TypeVar("T")
@@ -27,97 +27,6 @@ _NUMBER = re.compile(r"[+-]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][+-]?[0-9]+)?")
 _LOOKS_NUMERIC = re.compile(
     r"[+\-−]?\s*[0-9.,'\s\u00a0\u202f]*[0-9][0-9.,'\s\u00a0\u202f]*(?:[eE][+\-−]?[0-9]+)?\s*%?"
 )
-
-
-class OddKind(StrEnum):
-    """Why a cell is not simply the number or text that it seems to be."""
-
-    PERCENT = "percent format"  # value 0.031 is shown as 3.1 %
-    SCALED = "scaled format"  # value 12000 is shown as 12
-    UNIT_FORMAT = "unit in the number format"  # value 45 is shown as 45 dBm, or as 45 €
-    DATE = "date or time"
-    ERROR = "error cell"  # the grid holds ""
-    NO_VALUE = "formula without a stored value"  # the grid holds "" or a placeholder 0
-    TEXT_NUMBER = "number stored as text"
-    HIDDEN = "hidden row or column"
-    MERGED = "part of a merged range"
-
-
-@dataclass(frozen=True, slots=True)
-class OddCell:
-    """One oddity of one cell; ``detail`` is the format code, the error text or the anchor, ``unit`` the text that
-    the number format writes beside the number."""
-
-    kind: OddKind
-    detail: str = ""
-    unit: str = ""
-
-
-@dataclass(frozen=True, slots=True)
-class OddRun:
-    """The same oddity in rows ``first`` to ``last`` (both included) of one column."""
-
-    column: int
-    first: int
-    last: int
-    cell: OddCell
-
-
-class OddCells:
-    """Odd cells of a sheet, kept as runs down a column: a percent-formatted column is one run, not 100,000 entries."""
-
-    __slots__ = ("_columns",)
-
-    def __init__(self, runs: Iterable[OddRun] = ()) -> None:
-        self._columns: dict[int, list[OddRun]] = {}
-        for run in sorted(runs, key=lambda run: (run.column, run.first)):
-            self._columns.setdefault(run.column, []).append(run)
-
-    def at(self, row: int, column: int) -> OddCell | None:
-        """The oddity of one cell, if it has one."""
-        runs = self._columns.get(column, [])
-        place = bisect_right(runs, row, key=lambda run: run.first) - 1
-        return runs[place].cell if place >= 0 and row <= runs[place].last else None
-
-    def in_column(self, column: int, start: int, stop: int) -> list[OddRun]:
-        """The runs of ``column`` that touch rows ``start`` up to, not including, ``stop``."""
-        return [run for run in self._columns.get(column, []) if run.first < stop and run.last >= start]
-
-    def __iter__(self) -> Iterator[OddRun]:
-        for runs in self._columns.values():
-            yield from runs
-
-    def __len__(self) -> int:
-        return sum(run.last - run.first + 1 for run in self)
-
-
-@dataclass(frozen=True, slots=True)
-class CellRange:
-    """A rectangle of cells, both corners included."""
-
-    first_row: int
-    first_column: int
-    last_row: int
-    last_column: int
-
-    def __contains__(self, cell: tuple[int, int]) -> bool:
-        return self.first_row <= cell[0] <= self.last_row and self.first_column <= cell[1] <= self.last_column
-
-    def touches(self, other: CellRange) -> bool:
-        """Whether the two have a cell in common."""
-        return (
-            self.first_row <= other.last_row
-            and other.first_row <= self.last_row
-            and self.first_column <= other.last_column
-            and other.first_column <= self.last_column
-        )
-
-    def turn(self) -> CellRange:
-        """The rectangle with rows and columns changed."""
-        return CellRange(self.first_column, self.first_row, self.last_column, self.last_row)
-
-    def __str__(self) -> str:
-        return f"{address(self.first_row, self.first_column)}:{address(self.last_row, self.last_column)}"
 
 
 @dataclass(frozen=True, slots=True)
@@ -333,28 +242,6 @@ def by_sheet_name(known: Mapping[str, T], name: str, file: str) -> T:
             return found
     names = ", ".join(map(repr, known)) or "none"
     raise FileError(f"there is no sheet {name!r}", where=file, hint=f"sheets in the file: {names}")
-
-
-def address(row: int, column: int) -> str:
-    """``address(17, 3)`` is ``"C17"``."""
-    return f"{column_letter(column)}{row}"
-
-
-def column_letter(column: int) -> str:
-    """``column_letter(28)`` is ``"AB"``."""
-    letters = ""
-    while column > 0:
-        column, place = divmod(column - 1, 26)
-        letters = chr(65 + place) + letters
-    return letters
-
-
-def column_number(letters: str) -> int:
-    """``column_number("AB")`` is 28."""
-    number = 0
-    for letter in letters.upper():
-        number = number * 26 + ord(letter) - 64
-    return number
 
 
 def is_blank(value: Value) -> bool:

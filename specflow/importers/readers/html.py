@@ -8,7 +8,8 @@ from html.parser import HTMLParser
 from specflow.errors import FileError
 from specflow.importers.readers.delimiter import decimal_mark
 from specflow.importers.readers.encoding import decode
-from specflow.importers.readers.grid import CellRange, Grid
+from specflow.importers.readers.grid import Grid
+from specflow.importers.readers.places import CellRange
 from specflow.importers.readers.source import Source
 from specflow.importers.readers.stores import Value
 

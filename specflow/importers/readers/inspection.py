@@ -7,7 +7,8 @@ from xml.parsers import expat
 
 from specflow.importers.readers.book import read_book, relations
 from specflow.importers.readers.cell_events import cell_place
-from specflow.importers.readers.grid import address, by_sheet_name
+from specflow.importers.readers.grid import by_sheet_name
+from specflow.importers.readers.places import address
 from specflow.importers.readers.source import Source
 from specflow.importers.readers.styles import children, local_name
 from specflow.importers.readers.xlsx import open_archive

@@ -16,7 +16,8 @@ from typing import Any
 
 from specflow.errors import FileError
 from specflow.importers.readers.encoding import decode
-from specflow.importers.readers.grid import Grid, OddCell, OddKind
+from specflow.importers.readers.grid import Grid
+from specflow.importers.readers.odd_cells import OddCell, OddKind
 from specflow.importers.readers.odd_marks import OddMarks
 from specflow.importers.readers.source import Source
 from specflow.importers.readers.stores import Value
@@ -109,6 +110,17 @@ def _flatten(pairs: _Pairs, prefix: str, line: _Line) -> None:
             line.lists += 1
             value = json.dumps(_plain(value), ensure_ascii=False)
         line.cells[key] = "" if value is None else value
+    for name, times in Counter(name for name, _ in pairs).items():
+        if times > 1:
+            _stands_twice(f"{prefix}{name}", line)
+
+
+def _stands_twice(key: str, line: _Line) -> None:
+    """Of a key that stands twice, nothing below it is known either."""
+    below = [other for other in line.cells if other == key or other.startswith(f"{key}.")]
+    line.twice.update(below or [key])
+    for other in below:
+        del line.cells[other]
 
 
 def _plain(value: Any) -> Any:

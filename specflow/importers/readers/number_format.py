@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import re
 
-from specflow.importers.readers.grid import OddCell, OddKind
+from specflow.importers.readers.odd_cells import OddCell, OddKind
 
 BUILT_IN = {
     0: "General", 1: "0", 2: "0.00", 3: "#,##0", 4: "#,##0.00", 9: "0%", 10: "0.00%", 11: "0.00E+00", 12: "# ?/?",

@@ -5,7 +5,8 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
-from specflow.importers.readers.grid import CellRange, OddCell, OddCells, OddRun
+from specflow.importers.readers.odd_cells import OddCell, OddCells, OddRun
+from specflow.importers.readers.places import CellRange
 
 Integers = NDArray[np.int64]
 Runs = tuple[Integers, Integers, Integers, Integers]

@@ -10,10 +10,11 @@ import re
 from collections.abc import Iterable
 from xml.parsers import expat
 
-from specflow.importers.readers.grid import CellRange, OddCell, address
+from specflow.importers.readers.odd_cells import OddCell
 from specflow.importers.readers.odd_marks import OddMarks
 from specflow.importers.readers.ods_styles import OdsStyles
 from specflow.importers.readers.ods_values import Unreadable, read_cell
+from specflow.importers.readers.places import CellRange, address
 from specflow.importers.readers.stores import Value
 
 MAX_ROW, MAX_COLUMN = 1_048_576, 16_384

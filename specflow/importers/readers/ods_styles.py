@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field
 
-from specflow.importers.readers.grid import OddCell, OddKind
+from specflow.importers.readers.odd_cells import OddCell, OddKind
 
 _KINDS = {
     "number:percentage-style": OddKind.PERCENT,

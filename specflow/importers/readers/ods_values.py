@@ -5,7 +5,7 @@ from __future__ import annotations
 import re
 from datetime import date, datetime, time, timedelta
 
-from specflow.importers.readers.grid import OddCell, OddKind
+from specflow.importers.readers.odd_cells import OddCell, OddKind
 from specflow.importers.readers.ods_styles import OdsStyles
 from specflow.importers.readers.stores import Value
 

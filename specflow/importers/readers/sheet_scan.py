@@ -17,8 +17,9 @@ from specflow.errors import FileError
 from specflow.importers.readers.cell_bytes import Cells, Irregular, scan_rows
 from specflow.importers.readers.cell_events import SheetEvents, SheetProblem
 from specflow.importers.readers.cell_values import CellValues
-from specflow.importers.readers.grid import CellRange, OddCells
+from specflow.importers.readers.odd_cells import OddCells
 from specflow.importers.readers.odd_marks import OddMarks
+from specflow.importers.readers.places import CellRange
 from specflow.importers.readers.styles import Styles
 
 MAX_ROW_BYTES = 64 * 1024 * 1024

@@ -5,8 +5,8 @@ from __future__ import annotations
 from dataclasses import dataclass
 from xml.etree.ElementTree import Element
 
-from specflow.importers.readers.grid import OddCell
 from specflow.importers.readers.number_format import odd_format
+from specflow.importers.readers.odd_cells import OddCell
 
 
 @dataclass(frozen=True, slots=True)

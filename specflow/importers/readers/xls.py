@@ -16,9 +16,11 @@ from xlrd.biffh import XLRDError
 from specflow.errors import FileError
 from specflow.importers.readers.date_serials import from_serial, is_duration
 from specflow.importers.readers.formula_records import formulas_never_calculated
-from specflow.importers.readers.grid import CellRange, Grid, OddCell, OddKind
+from specflow.importers.readers.grid import Grid
 from specflow.importers.readers.number_format import odd_format
+from specflow.importers.readers.odd_cells import OddCell, OddKind
 from specflow.importers.readers.odd_marks import OddMarks
+from specflow.importers.readers.places import CellRange
 from specflow.importers.readers.source import Source
 from specflow.importers.readers.stores import Value
 

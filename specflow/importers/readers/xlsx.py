@@ -14,7 +14,9 @@ from specflow.importers.readers.book import Book, read_book
 from specflow.importers.readers.bulk import BulkError, bulk_workbook
 from specflow.importers.readers.cell_values import CellValues
 from specflow.importers.readers.contents import Content, content_of
-from specflow.importers.readers.grid import CellRange, Grid, OddKind, address
+from specflow.importers.readers.grid import Grid
+from specflow.importers.readers.odd_cells import OddKind
+from specflow.importers.readers.places import CellRange, address
 from specflow.importers.readers.shared_texts import read_shared_texts
 from specflow.importers.readers.sheet_scan import SheetScan, scan_sheet
 from specflow.importers.readers.source import Source

@@ -7,7 +7,8 @@ import unicodedata
 from datetime import date, datetime, time, timedelta
 
 from specflow.errors import UnitError
-from specflow.importers.readers.grid import Grid, OddCell, OddKind
+from specflow.importers.readers.grid import Grid
+from specflow.importers.readers.odd_cells import OddCell, OddKind
 from specflow.units import parse_number
 
 _BLANKS = str.maketrans(

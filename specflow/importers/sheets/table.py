@@ -4,7 +4,8 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from specflow.importers.readers.grid import CellRange, Grid, address, is_blank
+from specflow.importers.readers.grid import Grid, is_blank
+from specflow.importers.readers.places import CellRange, address
 from specflow.importers.sheets.header import HEADER_ROWS, Header, read_header
 from specflow.importers.sheets.row import SheetRow
 from specflow.importers.sheets.spelling import near

@@ -129,6 +129,13 @@ def test_keys_that_become_one_by_flattening_are_two_values(tmp_path: Path) -> No
     assert grid.rows == [["a.b"], [""], [3.0]]
 
 
+def test_of_an_object_that_stands_twice_nothing_is_taken(tmp_path: Path) -> None:
+    twice = '{"f": {"value": 1, "at": 2}, "f": {"value": 3}}'
+    grid = grid_of(tmp_path / "a.jsonl", '{"f": {"value": 5, "at": 6}}', twice)
+    assert grid.rows == [["f.value", "f.at"], [5.0, 6.0], ["", ""]]
+    assert grid.column_floats(1, 1, 3)[1] == grid.column_floats(2, 1, 3)[1] == [2]
+
+
 @pytest.mark.parametrize(
     ("text", "what"),
     [

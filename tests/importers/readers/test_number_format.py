@@ -5,8 +5,8 @@ from __future__ import annotations
 import pytest
 from openpyxl.styles.numbers import BUILTIN_FORMATS, is_date_format
 
-from specflow.importers.readers.grid import OddCell, OddKind
 from specflow.importers.readers.number_format import BUILT_IN, odd_format
+from specflow.importers.readers.odd_cells import OddCell, OddKind
 
 
 @pytest.mark.parametrize(

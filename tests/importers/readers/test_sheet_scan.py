@@ -12,7 +12,8 @@ from hypothesis import strategies as st
 from specflow.errors import FileError
 from specflow.importers.readers import sheet_scan
 from specflow.importers.readers.cell_bytes import Irregular
-from specflow.importers.readers.grid import OddCell, OddKind, address
+from specflow.importers.readers.odd_cells import OddCell, OddKind
+from specflow.importers.readers.places import address
 from specflow.importers.readers.sheet_scan import SheetScan, scan_sheet
 from specflow.importers.readers.styles import Styles
 from tests.importers.readers.workbooks import MAIN

@@ -9,7 +9,8 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from specflow.importers.readers.grid import Grid, OddCell, OddCells, OddKind, OddRun
+from specflow.importers.readers.grid import Grid
+from specflow.importers.readers.odd_cells import OddCell, OddCells, OddKind, OddRun
 from specflow.importers.sheets.cells import CellFault, cell_date, cell_number, cell_text, clean
 
 
