@@ -8,7 +8,17 @@ from numpy.typing import NDArray
 from specflow.budgets.interpolation import interpolated, refuse_outside
 from specflow.budgets.own_conditions import numbers
 from specflow.budgets.traces import trace_values
-from specflow.model.budget_line import BudgetLine, ConditionTable, Constant, Drift, TouchstoneTrace, Trace
+from specflow.conditions.recorded import recorded_words
+from specflow.errors import ConditionsError
+from specflow.model.budget_line import (
+    BudgetLine,
+    ConditionTable,
+    Constant,
+    Drift,
+    TouchstoneTrace,
+    Trace,
+    WordTable,
+)
 from specflow.model.columns import Columns
 from specflow.model.snapshot import Snapshot
 
@@ -26,6 +36,8 @@ def line_values(line: BudgetLine, own: Columns, snapshot: Snapshot, where: str) 
             values = np.array([value])
         case ConditionTable() as table:
             values = _table_values(table, own, where, line)
+        case WordTable() as words:
+            values = _word_values(words, own, where, line)
         case TouchstoneTrace() as trace:
             place = numbers(own, trace.dimension, "Hz", where, f"{trace.file} {trace.entry}")
             at = np.array(trace.frequency_hz)
@@ -47,6 +59,29 @@ def _table_values(table: ConditionTable, own: Columns, where: str, line: BudgetL
         index = np.searchsorted(at, place + _CLOSE * np.abs(place), side="right") - 1
         return np.asarray(values[np.clip(index, 0, len(at) - 1)])
     return interpolated(place, at, values, table.drawn_in)
+
+
+def _word_values(table: WordTable, own: Columns, where: str, line: BudgetLine) -> Floats:
+    """Return the values for the words that the block's conditions have. ConditionsError for one without a value."""
+    what = f"the table of {line.parameter}"
+    column = recorded_words(own, table.dimension)
+    if column is None:
+        stated = ", ".join(own.names) or "nothing"
+        raise ConditionsError(
+            f"{what} depends on {table.dimension}, which the block's conditions do not state (they state {stated})",
+            where=where,
+            hint=f"add {table.dimension} to the conditions set",
+        )
+    known = {word.casefold(): value for word, value in zip(table.words, table.values, strict=True)}
+    asked = [column.word(row) for row in range(own.size)]
+    lacking = next((word for word in asked if word.casefold() not in known), None)
+    if lacking is not None:
+        raise ConditionsError(
+            f"{what} has {table.dimension} {', '.join(table.words)}, needed is {lacking or 'where none is stated'}",
+            where=where,
+            hint="give it a value for each; nothing is taken from another state",
+        )
+    return np.array([known[word.casefold()] for word in asked])
 
 
 def _drift_values(drift: Drift, own: Columns, where: str, line: BudgetLine) -> Floats:

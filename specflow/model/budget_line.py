@@ -67,6 +67,30 @@ class ConditionTable(Document):
         return self
 
 
+class WordTable(Document):
+    """A value by a condition told in words (gain state, band, mode) of the block's own conditions.
+
+    Any other word has no value.
+    """
+
+    kind: Literal["words"] = "words"
+    dimension: str
+    words: tuple[str, ...] = Field(min_length=1)
+    values: tuple[float, ...]
+
+    @model_validator(mode="after")
+    def _words_are_single(self) -> Self:
+        if len(self.words) != len(self.values):
+            raise ValueError(
+                f"the table by {self.dimension} has {len(self.words)} words and {len(self.values)} values"
+            )
+        keys = [word.casefold() for word in self.words]
+        for word, key in zip(self.words, keys, strict=True):
+            if keys.count(key) > 1:
+                raise ValueError(f"the table by {self.dimension} has {word} twice")
+        return self
+
+
 class Trace(Document):
     """A column of a recorded evidence table, read along one dimension between its rows (linear in dB or linear).
 
@@ -101,7 +125,9 @@ class TouchstoneTrace(Document):
         return self
 
 
-LineValue = Annotated[Constant | ConditionTable | Trace | TouchstoneTrace, Field(discriminator="kind")]
+LineValue = Annotated[
+    Constant | ConditionTable | WordTable | Trace | TouchstoneTrace, Field(discriminator="kind")
+]
 
 
 class Drift(Document):

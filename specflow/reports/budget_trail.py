@@ -7,7 +7,7 @@ from collections.abc import Iterator, Sequence
 from specflow.model.base import code_key
 from specflow.model.block import Block
 from specflow.model.budget import Allocation, Budget, BudgetLine
-from specflow.model.budget_line import ConditionTable, Constant, Drift, TouchstoneTrace, Trace
+from specflow.model.budget_line import ConditionTable, Constant, Drift, TouchstoneTrace, Trace, WordTable
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Snapshot
 from specflow.reports.budget import tolerance_words
@@ -66,6 +66,9 @@ def value_words(line: BudgetLine) -> str:
             words = with_unit(value, line.unit)
         case ConditionTable(dimension=dimension, values=values):
             words = f"{rounded(min(values))} to {with_unit(max(values), line.unit)} by {dimension}"
+        case WordTable(dimension=dimension, words=states, values=values):
+            listed = (f"{state} {rounded(value)}" for state, value in zip(states, values, strict=True))
+            words = f"{', '.join(listed)} {line.unit} by {dimension}"
         case Trace(table=table):
             words = f"as recorded in {table}"
         case TouchstoneTrace(file=file, entry=entry):

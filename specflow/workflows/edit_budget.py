@@ -10,7 +10,7 @@ from specflow.errors import DocumentError, SpecflowError
 from specflow.importers.sheets.line_values import CellContext, read_line_value
 from specflow.model.base import code_key
 from specflow.model.budget import Budget, BudgetLine
-from specflow.model.budget_line import ConditionTable, Constant, LineTolerance
+from specflow.model.budget_line import ConditionTable, Constant, LineTolerance, WordTable
 from specflow.model.budget_outcome import BudgetOutcome
 from specflow.model.change import Change
 from specflow.model.conditions import ConditionMap, ConditionsSet
@@ -144,7 +144,7 @@ def _tolerance(text: str, unit: str, line: BudgetLine) -> LineTolerance:
 def _step(old: BudgetLine, new: BudgetLine) -> str:
     """Say by how much a constant goes up or down; tables are told by their ends already."""
     if not isinstance(old.value, Constant) or not isinstance(new.value, Constant) or old.unit != new.unit:
-        return ", another table" if isinstance(new.value, ConditionTable) else ""
+        return ", another table" if isinstance(new.value, ConditionTable | WordTable) else ""
     step = new.value.value - old.value.value
     if step == 0:
         return ""

@@ -4,6 +4,7 @@
 24 dB - 0.02 dB/K of temperature_baseplate from 23 °C between -40 and 85 °C
 table frequency: 17.7 GHz 23.5; 20.2 GHz 24.5 dB linear
 table if_frequency: 2 GHz 8; 6 GHz 7.2 dB step
+table gain_state: high = 20 dB; low = 5 dB
 trace T-12: Gain along frequency item LNA-1
 touchstone filter.s2p S21 along if_frequency
 """
@@ -19,7 +20,7 @@ from typing import Literal
 from specflow.conditions import find_dimension, is_unlocated_temperature, unlocated_temperature_hint
 from specflow.errors import DocumentError, UnitError
 from specflow.importers.readers.touchstone_trace import read_touchstone
-from specflow.model.budget_line import ConditionTable, Constant, Drift, LineValue, Trace
+from specflow.model.budget_line import ConditionTable, Constant, Drift, LineValue, Trace, WordTable
 from specflow.units import convert, format_value, parse_number, parse_unit, split_quantity, tolerance_unit
 
 _NUMBER = r"[+-]?(?:\d+(?:[.,]\d+)?|[.,]\d+)(?:[eE][+-]?\d+)?"
@@ -39,6 +40,7 @@ _BETWEEN = re.compile(
 _ENTRY = re.compile(
     rf"^(?P<at>{_NUMBER})\s*(?P<at_unit>[^\s\d:=+-][^\s:=]*)?\s*[\s:=]\s*(?P<value>{_NUMBER})\s*(?P<unit>\S+)?$"
 )
+_WORD_ENTRY = re.compile(rf"^(?P<word>[^=]*[^=\s])\s*=\s*(?P<value>{_NUMBER})\s*(?P<unit>\S+)?$")
 _TRACE = re.compile(
     r"^trace\s+(?P<table>[^:]+?)\s*:\s*(?P<column>.+?)"
     r"(?:\s+along\s+(?P<along>\w+))?(?:\s+item\s+(?P<item>.+?))?(?:\s+linear\s+in\s+(?P<drawn>dB|power))?$",
@@ -130,6 +132,9 @@ def _needed_unit(unit: str, context: CellContext, text: str) -> str:
 def _table(match: re.Match[str], context: CellContext) -> ReadValue:
     dimension = _dimension(match["dimension"])
     text = match["entries"].strip()
+    words = [_WORD_ENTRY.match(part.strip()) for part in re.split(r"[;\n]", text) if part.strip()]
+    if any(one is not None and not re.match(_NUMBER, one["word"]) for one in words):
+        return _word_table(dimension, text, words, context)
     between = _BETWEEN.search(text)
     if between is None:
         raise DocumentError(
@@ -156,6 +161,28 @@ def _table(match: re.Match[str], context: CellContext) -> ReadValue:
     if value.between == "linear" and not between["drawn"] and parse_unit(unit).is_log:
         notes = (f"straight lines between the entries by {dimension} are drawn in dB",)
     return ReadValue(value, unit, (), notes)
+
+
+def _word_table(
+    dimension: str, text: str, entries: Sequence[re.Match[str] | None], context: CellContext
+) -> ReadValue:
+    """Read ``high = 20 dB; low = 5 dB``: values by words, nothing between them."""
+    found = [one for one in entries if one is not None]
+    if len(found) < len(entries):
+        raise DocumentError(
+            f"{text!r} is no table by words", hint="write each state with its value: high = 20 dB; low = 5 dB"
+        )
+    units = list(dict.fromkeys(one["unit"] for one in found if one["unit"]))
+    if len(units) > 1:
+        raise DocumentError(
+            f"the values of the table are in {' and '.join(units)}", hint="write them in one unit"
+        )
+    value = WordTable(
+        dimension=dimension,
+        words=tuple(one["word"].strip("'\"") for one in found),
+        values=tuple(parse_number(one["value"]) for one in found),
+    )
+    return ReadValue(value, _needed_unit(units[0] if units else "", context, text))
 
 
 def _entry(text: str) -> dict[str, str]:
@@ -244,6 +271,11 @@ def value_words(value: LineValue, unit: str, drifts: Sequence[Drift]) -> str:
                 f"{format_value(min(value.values))} to {format_value(max(value.values))} {unit}, "
                 + _between_words(value)
             )
+        case WordTable():
+            listed = (
+                f"{word} {format_value(one)}" for word, one in zip(value.words, value.values, strict=True)
+            )
+            words = f"by {value.dimension}: {', '.join(listed)} {unit}"
         case Trace():
             words = f"as recorded in {value.table}, {value.column}"
         case _:

@@ -11,7 +11,15 @@ import pytest
 from specflow.budgets import evaluate_budget
 from specflow.importers.sheets.line_values import CellContext, read_line_value
 from specflow.model.budget import Budget, Law
-from specflow.model.budget_line import ConditionTable, Constant, Distribution, Meaning, TouchstoneTrace, Trace
+from specflow.model.budget_line import (
+    ConditionTable,
+    Constant,
+    Distribution,
+    Meaning,
+    TouchstoneTrace,
+    Trace,
+    WordTable,
+)
 from specflow.model.draft import Draft
 from specflow.parameters import load_dictionary
 from tests.builders import a_snapshot, read_sheets
@@ -273,3 +281,19 @@ def test_a_touchstone_entry_is_taken_over_with_the_digest_of_its_file(tmp_path: 
     (tmp_path / "bad.s2p").write_text("nothing of the kind")
     with pytest.raises(Exception, match="not readable"):
         read_line_value("touchstone bad.s2p S21", CellContext(folder=tmp_path))
+
+
+def test_a_table_by_words_is_read_and_refused_where_it_is_none() -> None:
+    context = CellContext()
+    found = read_line_value("table gain_state: high = 20 dB; low = 5 dB", context)
+    assert found.value == WordTable(dimension="gain_state", words=("high", "low"), values=(20.0, 5.0))
+    assert found.unit == "dB"
+    quoted = read_line_value("table by mode: 'high power' = 3; eco = 2.5", CellContext(unit="dB"))
+    assert isinstance(quoted.value, WordTable) and quoted.value.words == ("high power", "eco")
+    for text, words in (
+        ("table mode: high = 20 dB; low 5 dB", "no table by words"),
+        ("table mode: high = 20 dB; low = 5 %", "dB and %"),
+        ("table mode: high = 20 dB; High = 5 dB", "twice"),
+    ):
+        with pytest.raises(Exception, match=words):
+            read_line_value(text, context)
