@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING, Annotated, Any
 
@@ -113,6 +114,11 @@ def attach(
     if verify:
         from specflow.cli.attach_verify import verify_attached
 
+        _refuse_beside_verify(
+            state=state, sheet=sheet, mapping=mapping, propose_mapping=propose_mapping, supersedes=supersedes,
+            beside=beside, resolves=resolves, include_hidden=include_hidden, keep=keep, take_rest=take_rest,
+            yes=yes, dry_run=dry_run,
+        )  # fmt: skip
         return verify_attached(files, project, as_json=as_json)
     if not files:
         raise SpecflowError(
@@ -137,6 +143,15 @@ def attach(
             return _propose(store, files[0], options, propose_mapping)
         run = _Run(store, options, decision, yes, dry_run, as_json)
         return run.attach_all(files)
+
+
+def _refuse_beside_verify(**options: object) -> None:
+    """Refuse options that say how to attach, where nothing is attached."""
+    given = [f"--{name.replace('_', '-')}" for name, value in options.items() if value]
+    if given:
+        raise SpecflowError(
+            f"--verify attaches nothing, so {', '.join(given)} has no meaning with it", hint="leave it out"
+        )
 
 
 def _statements(state: list[str]) -> dict[str, str]:
@@ -242,11 +257,16 @@ class _Run:
             return ExitCode.CLEAN
         if self._as_json:
             self._data[-1] |= {"stored": list(stored.tables), "revision": stored.revision}
-        say(
-            f"stored as {', '.join(stored.tables) or 'a mapping'}; the project is at revision {stored.revision}"
-        )
+        say(f"stored as {_named(stored.tables)}; the project is at revision {stored.revision}")
         return ExitCode.CLEAN
 
     def _keeps(self, preview: AttachPreview) -> bool:
         """Whether accepting a file that has nothing new may still keep a copy of it."""
         return self._decision.keep or preview.snapshot.project.policy.keep_copies
+
+
+def _named(tables: Sequence[str]) -> str:
+    """Name what was stored; of many tables the first and the last."""
+    if len(tables) > 8:
+        return f"{tables[0]} to {tables[-1]} ({len(tables)} tables)"
+    return ", ".join(tables) or "a mapping"

@@ -72,5 +72,6 @@ def testsheet(
         put_table(bench_summary(sheet.workbook))
         put("")
         put(str(output))
-    say(f"{sheet.workbook.points} values; filled in, wholly or half: specflow attach {output}")
+    count = sheet.workbook.points
+    say(f"{count} value{'s' * (count != 1)}; filled in, wholly or half: specflow attach {output}")
     return int(ExitCode.CLEAN)

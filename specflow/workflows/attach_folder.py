@@ -210,7 +210,8 @@ def _has_nothing_new(preview: AttachPreview, decision: Decision) -> bool:
 def _decision_for(preview: AttachPreview, decision: Decision) -> Decision:
     """The decision for one file of many: of the tables to be superseded only those that it has rows of."""
     here = {code_key(one.earlier) for found in preview.replacements.values() for one in found}
-    return replace(decision, supersedes=[name for name in decision.supersedes if code_key(name) in here])
+    wanted = [name for name in decision.supersedes if code_key(name) in here]
+    return replace(decision, supersedes=wanted, resolves=decision.resolves if wanted else "")
 
 
 def _known_words(preview: AttachPreview) -> str:

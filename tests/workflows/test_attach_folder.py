@@ -143,7 +143,9 @@ def test_earlier_tables_are_superseded_by_the_files_that_have_their_rows(
     run_of(store, results)
     book(results / "b.xlsx", [HEADER, ["LNA-1", 27.5, 21]])
     book(results / "c.xlsx", OTHER)
-    run = run_of(store, results, Decision("A. B.", supersedes=("EV-1", "EV-9")))
+    run = run_of(
+        store, results, Decision("A. B.", supersedes=("EV-1", "EV-9"), resolves="NCR-1: typed wrongly")
+    )
     assert [one.superseded for one in run.files] == [(), ("EV-1",), ()]
     assert run.notes == ["--supersedes EV-9: no file has rows of it"]
     assert "superseded EV-1" in run.counts()
