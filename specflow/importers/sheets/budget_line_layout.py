@@ -106,8 +106,8 @@ LAYOUT = SheetLayout(
             required=True,
             guidance=(
                 "24 dB · 24 dB - 0.02 dB/K of temperature_baseplate from 23 °C · table frequency: 17.7 GHz 23.5; "
-                "20.2 GHz 24.5 dB linear · table gain_state: high = 20 dB; low = 5 dB · trace T-1: Gain along frequency "
-                "· touchstone filter.s2p S21"
+                "20.2 GHz 24.5 dB linear · table gain_state: high = 20 dB; low = 5 dB · trace T-1: Gain along "
+                "frequency · touchstone filter.s2p S21"
             ),
             example="24 dB - 0.02 dB/K of temperature_baseplate from 23 °C",
             width=46,
