@@ -13,11 +13,14 @@ from openpyxl import load_workbook
 
 from specflow.errors import SpecflowError
 from specflow.importers.measurements import MeasuredTable
+from specflow.importers.readers import column_number
+from specflow.model.evidence import SOURCE_COLUMN
 from tests.importers.measured.make import book, measure, text
 
 HEADERS = (
     "Item", "f (GHz)", "Gain (dB)", "NF", "EVM (%)", "T (°C)", "T_amb (°C)", "U (dB), k=2", "Limit (dB)", "Pass/Fail",
-    "Pout (dBm)", "Gain @ 28 GHz (dB)", "#", "Date", "Remark", "", "_", "S21", "Mode", "dB", "±", "k=2", "(", "@ x",
+    "Pout (dBm)", "Gain @ 28 GHz (dB)", "Gain @ 30 GHz (dB)", "SN 7", "SN 8", "28 GHz", "30 GHz", "Parameter", "Value",
+    "Unit", "f (GHz) \\ Baseplate (°C)", "GHz", "#", "Date", "Remark", "", "_", "S21", "Mode", "dB", "±", "k=2", "(", "@ x",
 )  # fmt: skip
 WORDS = (
     "Mean",
@@ -66,7 +69,10 @@ def check(table: MeasuredTable, cell_at: Any) -> None:
     for value in table.document.values:
         arrays = table.columns.values[value.name]
         for row in np.flatnonzero(np.isfinite(arrays.low) & (arrays.low == arrays.high)).tolist():
-            cell = cell_at(int(table.columns.source_rows[row]), value.column)
+            column = value.column
+            if SOURCE_COLUMN in table.columns.extra:
+                column = column_number(table.columns.extra[SOURCE_COLUMN].word(row))
+            cell = cell_at(*table.document.cell(int(table.columns.source_rows[row]), column))
             number = float(str(cell).strip().replace("−", "-").replace(",", "."))
             assert float(arrays.low[row]) == number, (value.name, row, cell)
 
