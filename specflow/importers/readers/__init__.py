@@ -75,6 +75,18 @@ READERS = (
 )
 
 
+REMEDIES = {
+    ".xlsb": "save it as .xlsx",
+    ".fods": "save it as .ods",
+    ".xml": "save it as .xlsx, or export its table as .csv",
+    ".json": "write one object a line, as .jsonl",
+    ".zip": "unpack it",
+    ".gz": "unpack it",
+    ".pdf": "ask for the table itself, as .xlsx or .csv",
+}
+"""What to do with files that are not read and that somebody may well be sent."""
+
+
 @dataclass(frozen=True, slots=True)
 class GridFile(Sequence[Grid]):
     """The grids of one file, in the order of the file, and the fingerprint of the bytes they came from."""
@@ -108,10 +120,7 @@ def open_grids(path: str | Path, expected: FileFingerprint | None = None) -> Gri
     ending = path.suffix.lower()
     named = next((reader for reader in READERS if ending in reader.endings), None)
     if named is None:
-        known = ", ".join(ending for reader in READERS for ending in reader.endings)
-        raise FileError(
-            f"files of the kind {path.suffix!r} are not read", where=path.name, hint=f"known: {known}"
-        )
+        raise _unknown(path)
     content = content_of(source)
     if content is named.content:
         return GridFile(source.fingerprint, tuple(named.read(source)))
@@ -127,6 +136,16 @@ def open_grids(path: str | Path, expected: FileFingerprint | None = None) -> Gri
         )
     note = f"its ending is {ending}, but the file is {content}, and was read so"
     return GridFile(source.fingerprint, tuple(replace(grid, notes=(note, *grid.notes)) for grid in grids))
+
+
+def _unknown(path: Path) -> FileError:
+    known = ", ".join(ending for reader in READERS for ending in reader.endings)
+    remedy = REMEDIES.get(path.suffix.lower(), "")
+    return FileError(
+        f"files of the kind {path.suffix!r} are not read",
+        where=path.name,
+        hint=f"{remedy}; known: {known}" if remedy else f"known: {known}",
+    )
 
 
 def _is_clean(source: Source) -> bool:

@@ -37,6 +37,8 @@ def test_file_of_no_bytes_is_refused(tmp_path: Path, name: str) -> None:
 @pytest.mark.parametrize("name", ["a.pdf", "a", "a.xlsb"])
 def test_unknown_endings_are_refused_with_those_that_are_read(tmp_path: Path, name: str) -> None:
     (tmp_path / name).write_text("1,2")
+    text = refused(lambda: open_grids(tmp_path / name))
+    assert ("save it as .xlsx" in text) == (name == "a.xlsb")
     assert "known: .xlsx, .xlsm, .xls, .ods, .jsonl, .ndjson, .csv" in refused(
         lambda: open_grids(tmp_path / name)
     )
