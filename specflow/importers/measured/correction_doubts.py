@@ -82,7 +82,7 @@ def already_corrected(
     work: TableWork, correction: Correction, value: ValueColumn, low: NDArray[np.float64]
 ) -> str:
     """Return the earlier table of which these are the readings, row by row, with this correction in; "" if none is."""
-    if len(low) < _FEWEST:
+    if len(low) < _FEWEST or all(abs(point.added) <= _DIGITS for point in correction.points):
         return ""
     for earlier in work.context.snapshot.tables:
         columns = [one.column for one in earlier.applied if one.correction == correction.id]
