@@ -22,7 +22,9 @@ from specflow.importers.readers.odd_marks import OddMarks
 from specflow.importers.readers.source import Source
 from specflow.importers.readers.stores import Value
 
-MAX_CELLS = 16_000_000
+MAX_CELLS = 4_000_000
+"""About a gigabyte while they are read: every line is a dictionary until all keys are known."""
+
 MAX_KEYS = 2_000
 
 _UNIT_NAMES = ("unit", "units")
@@ -36,7 +38,7 @@ class _Line:
     """One line: its cells by key, the keys that stand twice, and what is wrong with the line as a whole."""
 
     cells: dict[str, Value] = field(default_factory=dict)
-    twice: set[str] = field(default_factory=set)
+    twice: frozenset[str] = frozenset()
     lists: int = 0
     broken: str = ""
 
@@ -103,22 +105,23 @@ def _flatten(pairs: _Pairs, prefix: str, line: _Line) -> None:
             _flatten(value, f"{key}.", line)
             continue
         if key in line.cells or key in line.twice:
-            line.twice.add(key)
+            line.twice |= {key}
             line.cells.pop(key, None)
             continue
         if isinstance(value, list):
             line.lists += 1
             value = json.dumps(_plain(value), ensure_ascii=False)
         line.cells[key] = "" if value is None else value
-    for name, times in Counter(name for name, _ in pairs).items():
-        if times > 1:
-            _stands_twice(f"{prefix}{name}", line)
+    if len({name for name, _ in pairs}) < len(pairs):
+        for name, times in Counter(name for name, _ in pairs).items():
+            if times > 1:
+                _stands_twice(f"{prefix}{name}", line)
 
 
 def _stands_twice(key: str, line: _Line) -> None:
     """Of a key that stands twice, nothing below it is known either."""
     below = [other for other in line.cells if other == key or other.startswith(f"{key}.")]
-    line.twice.update(below or [key])
+    line.twice |= set(below or [key])
     for other in below:
         del line.cells[other]
 
