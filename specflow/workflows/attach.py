@@ -11,7 +11,7 @@ from specflow.store import ProjectStore
 from specflow.workflows.attach_checks import check_acceptable
 from specflow.workflows.attach_documents import documents_of, file_of
 from specflow.workflows.attach_preview import AttachOptions, AttachPreview, Decision, preview_attach
-from specflow.workflows.kept_copy import keeps_copy, path_from_project, unchanged_content
+from specflow.workflows.kept_copy import keeps_copy, path_from_project, refuse_changed, unchanged_content
 
 __all__ = [
     "AttachOptions",
@@ -45,7 +45,7 @@ def accept_attach(store: ProjectStore, preview: AttachPreview, decision: Decisio
     """
     supersessions = check_acceptable(preview, decision)
     kept = keeps_copy(preview, asked=decision.keep)
-    content = unchanged_content(preview)
+    refuse_changed(preview)
     now = store.now()
     file = file_of(preview, now, path=path_from_project(store, preview.path), kept=kept)
     documents, columns = documents_of(preview, decision, supersessions, file, now)
@@ -58,7 +58,7 @@ def accept_attach(store: ProjectStore, preview: AttachPreview, decision: Decisio
     revision = store.apply(
         changes,
         columns=columns,
-        files={file.id: content} if is_new_copy else {},
+        files={file.id: unchanged_content(preview)} if is_new_copy else {},
         by=decision.by,
         reason=decision.reason or f"attached {preview.path.name}",
         expected_revision=preview.snapshot.revision,

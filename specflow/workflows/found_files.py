@@ -161,7 +161,7 @@ class FileSearch:
     def _hash(self, path: Path) -> str:
         if path not in self._hashes:
             try:
-                self._hashes[path] = _sha256(path)
+                self._hashes[path] = sha256_of(path)
             except OSError:
                 self._hashes[path] = ""
         return self._hashes[path]
@@ -171,7 +171,8 @@ def _ends_as(path: Path, recorded: str) -> bool:
     return bool(recorded) and path.as_posix().endswith(recorded.removeprefix("../"))
 
 
-def _sha256(path: Path) -> str:
+def sha256_of(path: Path) -> str:
+    """Return the digest of a file, read piece by piece. OSError when it cannot be read."""
     sums = hashlib.sha256()
     with path.open("rb") as stream:
         while block := stream.read(_BLOCK):

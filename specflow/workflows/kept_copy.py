@@ -13,6 +13,7 @@ from specflow.model.base import code_key
 from specflow.model.evidence import EvidenceFile
 from specflow.store import ProjectStore
 from specflow.workflows.attach_preview import AttachPreview
+from specflow.workflows.found_files import sha256_of
 from specflow.workflows.subjects import not_found
 
 #: The largest file of which a copy is kept: the project is one file that people send to each other.
@@ -42,6 +43,23 @@ def path_from_project(store: ProjectStore, path: Path) -> str:
     if relative.parts[:2] == (os.pardir, os.pardir):
         return ""
     return str(PurePosixPath(*relative.parts))
+
+
+def refuse_changed(preview: AttachPreview) -> None:
+    """Raise FileError when the file is not the one that was previewed any more. It is not taken into memory again."""
+    file, path = preview.measurements.file, preview.path
+    try:
+        found = sha256_of(path)
+    except OSError as error:
+        raise FileError(
+            f"cannot be read any more: {error.strerror or error}",
+            where=str(path),
+            hint="look at the preview again",
+        ) from error
+    if found != file.sha256:
+        raise FileError(
+            "the file has changed since it was looked at", where=path.name, hint="look at the preview again"
+        )
 
 
 def unchanged_content(preview: AttachPreview) -> bytes:

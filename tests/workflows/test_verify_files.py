@@ -249,7 +249,7 @@ def test_a_file_that_changes_between_preview_and_acceptance_is_refused(
     with pytest.raises(FileError, match="changed since it was looked at"):
         accept_attach(store, preview, ME)
     path.unlink()
-    with pytest.raises(FileError, match="no such file"):
+    with pytest.raises(FileError, match="cannot be read any more"):
         accept_attach(store, preview, ME)
     assert not store.load().tables
 
