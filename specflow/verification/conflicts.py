@@ -119,7 +119,9 @@ def _worst_pair(bench: Bench, group: Rows, allowed: Floats) -> tuple[int, int] |
         values = bench.readings.low[group]
         group = group[[(values - half).argmax(), (values + half).argmin()]]
     values, spread = bench.readings.low[group], allowed[group]
-    beyond = np.abs(values[:, None] - values[None, :]) - np.hypot(spread[:, None], spread[None, :])
+    with np.errstate(invalid="ignore"):  # two readings of no power at all (-inf dB) do not differ
+        beyond = np.abs(values[:, None] - values[None, :]) - np.hypot(spread[:, None], spread[None, :])
+    beyond[np.isnan(beyond)] = -np.inf
     records = bench.readings.record
     while True:
         first, second = divmod(int(beyond.argmax()), len(group))
