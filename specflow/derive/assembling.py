@@ -43,7 +43,7 @@ def derived_of(
         raise DocumentError(f"the groups give different units: {', '.join(sorted(units))}")
     governing = np.concatenate([taken[outcome.rows] for taken, outcome in found.outcomes])
     covers = _covers(request.law, over, found, outcomes)
-    rules = {outcome.u_rule for outcome in outcomes if outcome.u is not None}
+    rules = {one.u_rule for one in outcomes if one.u is not None and not np.isnan(one.u).all()}
     return Derived(
         _columns(request, rows, apart, found, governing),
         request.gives.key,

@@ -65,7 +65,8 @@ def _intro(preview: DerivePreview) -> str:
 def _uncertainty(preview: DerivePreview) -> str:
     if preview.derived.u_rule:
         return preview.derived.u_rule
-    known = any(role.columns.values[role.column].u is not None for role in preview.request.roles)
+    spreads = [role.columns.values[role.column].u for role in preview.request.roles]
+    known = any(spread is not None and bool((spread == spread).any()) for spread in spreads)
     return "none; this law knows no rule for it" if known else "none; the readings have none"
 
 
