@@ -54,9 +54,7 @@ def _intro(preview: DerivePreview) -> str:
     lines = [
         f"from {', '.join(preview.derivation.inputs)}; gives {' · '.join(filter(None, identity))} "
         f"in {derived.unit or 'plain numbers'}",
-        f"uncertainty: {derived.u_rule}"
-        if derived.u_rule
-        else "uncertainty: none; this law knows no rule for it",
+        f"uncertainty: {_uncertainty(preview)}",
     ]
     lines += [f"speaks for {covered_words(derived.covers)}"] if derived.covers else []
     return "\n· ".join([*lines, *derived.notes])

@@ -146,3 +146,14 @@ def test_what_a_requirement_lacks_is_proposed(command: Command, project: Path) -
     done = command(*words, "--yes")
     assert done.code == 0
     assert "1 of 1" in command("status").out
+
+
+def test_a_preview_says_whether_law_or_readings_lack_the_uncertainty(command: Command, project: Path) -> None:
+    assert "uncertainty: none; the readings have none" in command(*WORST, "--dry-run").out
+    table, columns = a_trace("T-2", u=[0.1, 0.2, 0.3])
+    with open_project(project) as store:
+        store.apply(adding(table), columns={"T-2": columns}, by="me")
+    over = ("--from", "T-2", "--over", "frequency 17.7..20.2 GHz", "--dry-run")
+    assert "uncertainty: that of the governing reading" in command("derive", "worst", *over).out
+    flat = command("derive", "ripple", "--gives", "gain_flatness", *over)
+    assert "uncertainty: none; this law knows no rule for it" in flat.out
