@@ -8,6 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from specflow.model.base import code_key
+from specflow.model.columns import TextColumn
 from specflow.model.evidence import EvidenceColumns, EvidenceFile, EvidenceTable, Supersession, Withdrawal
 from specflow.model.snapshot import Snapshot
 
@@ -64,19 +65,48 @@ def replaced_rows(
     ]
     wanted = [one.id for one in (*again, *cells, *others)]
     arrays = snapshot.load_columns(wanted) if wanted else {}
-    mine = _rows(table, columns) if again or others else {}
+    sharing = {one.id for one in (*again, *others) if _may_share_rows(arrays[one.id], columns)}
+    mine = _rows(table, columns) if sharing else {}
     found = []
     for one in again:
-        pairs = _pairs(_rows(one, arrays[one.id]), mine)
+        pairs = _pairs(_rows(one, arrays[one.id]), mine) if one.id in sharing else []
         same_file = code_key(one.file) in files
         found.append(
             _replacement(snapshot, one, pairs or (_same_cells(one, columns, arrays) if same_file else []))
         )
     found += [_replacement(snapshot, one, _same_cells(one, columns, arrays)) for one in cells]
     for one in others:
-        pairs = _pairs(_rows(one, arrays[one.id]), mine)
+        pairs = _pairs(_rows(one, arrays[one.id]), mine) if one.id in sharing else []
         found.append(_replacement(snapshot, one, pairs))
     return [one for one in found if one.rows]
+
+
+def _may_share_rows(earlier: EvidenceColumns, mine: EvidenceColumns) -> bool:
+    """Whether any row of two tables can be the same one; False where a condition, or the items, have nothing in common.
+
+    A folder of a hundred files of one layout would else compare each with all before it, row by row.
+    """
+    if _are_apart(earlier.items, mine.items):
+        return False
+    for name, values in mine.conditions.numeric.items():
+        other = earlier.conditions.numeric.get(name)
+        if other is None or np.isnan(values).any() or np.isnan(other).any():
+            continue
+        if not len(values) or not len(other) or values.max() < other.min() or other.max() < values.min():
+            return False
+        if not np.isin(other, values).any():
+            return False
+    texts = earlier.conditions.text
+    return not any(
+        name in texts and _are_apart(texts[name], text) for name, text in mine.conditions.text.items()
+    )
+
+
+def _are_apart(one: TextColumn, other: TextColumn) -> bool:
+    """Whether all rows of both say something, and no two the same."""
+    if (one.codes < 0).any() or (other.codes < 0).any():
+        return False
+    return {label.casefold() for label in one.labels}.isdisjoint(label.casefold() for label in other.labels)
 
 
 def _pairs(earlier: Rows, mine: Rows) -> list[tuple[int, bool]]:
