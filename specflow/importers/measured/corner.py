@@ -12,13 +12,13 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from specflow.conditions import find_dimension, is_unlocated_temperature
+from specflow.conditions import Comparison, find_dimension, is_unlocated_temperature
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.header_cells import HeaderCell
 from specflow.importers.measured.header_text import known_unit, read_header
 from specflow.importers.measured.mapping_parts import UNLOCATED, PivotMapping
 from specflow.importers.measured.quantity_text import NamedQuantity, name_quantity
-from specflow.importers.measured.result import Question
+from specflow.importers.measured.result import Question, Role
 from specflow.importers.measured.roles import role_of_words
 from specflow.importers.measured.statements import is_reading
 from specflow.importers.measured.tables import FoundTable, table_below
@@ -53,17 +53,26 @@ def next_number_row(table: FoundTable, context: Context) -> int | None:
     """The first row below the headers of a table that is a row of numbers over another one."""
     cells = table.cells(table.headers[0].column)
     begins: dict[Value, bool] = {}  # a column of items has a million cells and few words
+    last_label = -_ROWS_ABOVE - 1
     for place in np.flatnonzero(~cells.numeric[: table.stop_row - table.first_row]).tolist():
         row, value = table.first_row + place, cells.values[place]
-        if value not in begins:
-            begins[value] = is_blank(value) or is_reading(value) or _is_named(str(value), context)
+        if is_blank(value):
+            may = row - last_label <= _ROWS_ABOVE  # the label of a blank corner stands just above
+        else:
+            if value not in begins:
+                begins[value] = is_reading(value) or _is_label(str(value), context)
+            may, last_label = begins[value], row if begins[value] else last_label
         if (
-            begins[value]
+            may
             and row < table.grid.last_row
             and _number_row(table.grid, table.first_row, row, context) is not None
         ):
             return row
     return None
+
+
+def _is_label(label: str, context: Context) -> bool:
+    return _is_of_words(label) or _is_named(label, context)
 
 
 def table_under(grid: Grid, top: int, found: NumberRow, context: Context) -> FoundTable:
@@ -117,9 +126,10 @@ def _number_row(grid: Grid, top: int, row: int, context: Context) -> NumberRow |
         column, label, label_row = _label_above(grid, top, row, columns[0])
         if not label or _has_names(grid, row - 1, columns):
             return None
-    if not _is_over_numbers(grid, row, column, columns):
+    words = _is_of_words(str(label))
+    if not _is_over_numbers(grid, row, column, columns, words):
         return None
-    if not _is_named(str(label), context):
+    if not words and not _is_named(str(label), context):
         return None
     return NumberRow(row, column, " ".join(str(label).split()), label_row, columns)
 
@@ -152,12 +162,22 @@ def _has_names(grid: Grid, row: int, columns: Sequence[int]) -> bool:
     )
 
 
-def _is_over_numbers(grid: Grid, row: int, column: int, columns: Sequence[int]) -> bool:
-    """Whether the next two rows are rows of readings, the first column of them too."""
+def _is_of_words(label: str) -> bool:
+    """Whether the first column is one of items, or of a condition that is said in words."""
+    down = read_header(_corner_parts(label)[0])
+    named, dimension = role_of_words(down), find_dimension(down.name)
+    is_item = named is not None and named[0] is Role.ITEM
+    return is_item or (dimension is not None and dimension.comparison is Comparison.TEXT)
+
+
+def _is_over_numbers(grid: Grid, row: int, column: int, columns: Sequence[int], words: bool) -> bool:
+    """Whether the next two rows are rows of readings, the first column of them too unless it is one of words."""
     below = [one for one in range(row + 1, grid.last_row + 1) if not all(map(is_blank, grid.row(one)))][:2]
     for one in below:
         readings = sum(is_reading(grid.value(one, place)) for place in columns)
-        if not is_reading(grid.value(one, column)) or 2 * readings < len(columns):
+        first = grid.value(one, column)
+        fits = not is_blank(first) and not is_reading(first) if words else is_reading(first)
+        if not fits or 2 * readings < len(columns):
             return False
     return bool(below)
 

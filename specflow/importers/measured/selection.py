@@ -12,6 +12,7 @@ from specflow.importers.measured.column import ColumnMeaning
 from specflow.importers.measured.mapping import LayoutMapping
 from specflow.importers.measured.rejects import Rejected, Rejects, cell_text
 from specflow.importers.measured.result import Role
+from specflow.importers.measured.statements import is_reading
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.readers import is_blank
 
@@ -111,6 +112,8 @@ def _is_certain(table: FoundTable, row: int, modes: Collection[int]) -> bool:
     column, first = next(
         (place, value) for place, value in enumerate(table.grid.row(row), start=1) if not is_blank(value)
     )
+    if not any(map(is_reading, table.grid.row(row))):
+        return False  # words alone ("min", "max" below the headers) say something of the columns
     plain = re.sub(r"[:.\s]+", " ", str(first).casefold()).strip()
     return column not in modes and (
         plain in _SUMS_UP or plain in ("std dev", "standard deviation", "sub total")

@@ -112,6 +112,25 @@ def test_a_condition_across_the_columns(tmp_path: Path, rows: list[list[Any]], f
     assert sorted(values(table)) == [18, 19, 20, 21]
 
 
+def test_items_in_the_rows_and_a_condition_across_the_columns(tmp_path: Path) -> None:
+    rows = [["Gain (dB)"], ["Item \\ Frequency (GHz)", 27.5, 30], ["LNA-1", 20, 19], ["LNA-2", 21, 20]]
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows), stated={"block": "LNA"}))
+    assert table.columns is not None and conditions(table) == {"frequency": [27.5, 27.5, 30, 30]}
+    assert [table.columns.items.word(row) for row in range(4)] == ["LNA-1", "LNA-2"] * 2
+    assert values(table) == [20, 21, 19, 20]
+
+
+def test_words_below_the_headers_are_no_sum_of_the_readings(tmp_path: Path) -> None:
+    rows = [
+        ["f", "Gain", "NF"],
+        ["[GHz]", "[dB]", "[dB]"],
+        [None, "min", "max"],
+        [27.5, 20, 1.5],
+        [28, 21, 1.6],
+    ]
+    assert list(rejected(one_table(book(tmp_path / "a.xlsx", rows)))) == ["A3"]
+
+
 def test_numbers_as_headers_that_nothing_names_are_asked_about_once(tmp_path: Path) -> None:
     rows = [["f (GHz)", -20, 25, 70], [27.5, 20, 19, 18], [28, 21, 20, 19]]
     table = one_table(book(tmp_path / "a.xlsx", rows))
