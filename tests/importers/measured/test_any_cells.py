@@ -20,7 +20,8 @@ from tests.importers.measured.make import book, measure, text
 HEADERS = (
     "Item", "f (GHz)", "Gain (dB)", "NF", "EVM (%)", "T (°C)", "T_amb (°C)", "U (dB), k=2", "Limit (dB)", "Pass/Fail",
     "Pout (dBm)", "Gain @ 28 GHz (dB)", "Gain @ 30 GHz (dB)", "SN 7", "SN 8", "28 GHz", "30 GHz", "Parameter", "Value",
-    "Unit", "f (GHz) \\ Baseplate (°C)", "GHz", "#", "Date", "Remark", "", "_", "S21", "Mode", "dB", "±", "k=2", "(", "@ x",
+    "Unit", "f (GHz) \\ Baseplate (°C)", "GHz", "#", "Date", "Remark", "", "_", "S21", "Mode", "dB", "±", "k=2",
+    "(", "@ x",
 )  # fmt: skip
 WORDS = (
     "Mean",

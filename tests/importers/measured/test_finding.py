@@ -136,8 +136,8 @@ def test_numbers_as_headers_that_nothing_names_are_asked_about_once(tmp_path: Pa
     table = one_table(book(tmp_path / "a.xlsx", rows))
     assert len(table.questions) == 1 and "columns B to D have numbers as headers" in questions(table)
     mapping = (
-        '[[table]]\n[table.pivot]\nheader = "{temperature_baseplate}"\ncolumns = "B:D"\nparameter = "gain"\nunit = "dB"\n'
-        'units = { temperature_baseplate = "°C" }\n'
+        '[[table]]\n[table.pivot]\nheader = "{temperature_baseplate}"\ncolumns = "B:D"\nparameter = "gain"\n'
+        'unit = "dB"\nunits = { temperature_baseplate = "°C" }\n'
     )
     mapped = taken(one_table(book(tmp_path / "a.xlsx", rows), mapping=mapping))
     assert set(conditions(mapped)["temperature_baseplate"]) == {-20, 25, 70}

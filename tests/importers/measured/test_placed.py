@@ -160,8 +160,8 @@ def test_long_form_by_a_mapping(tmp_path: Path) -> None:
 def test_a_matrix_of_bare_numbers(tmp_path: Path) -> None:
     path = text(tmp_path / "a.csv", "10,9,8\n7,6,5\n")
     mapping = head(
-        'area = "A1:C2"\nheader_rows = 0\nmethod = "analysis"\n[table.matrix]\nparameter = "antenna_gain"\nunit = "dBi"\n'
-        'rows = { dimension = "theta", start = 0, step = 30, unit = "deg" }\n'
+        'area = "A1:C2"\nheader_rows = 0\nmethod = "analysis"\n[table.matrix]\nparameter = "antenna_gain"\n'
+        'unit = "dBi"\nrows = { dimension = "theta", start = 0, step = 30, unit = "deg" }\n'
         'columns = { dimension = "phi", start = -90, step = 90, unit = "deg" }'
     )
     [table] = measure(path, mapping=mapping).tables
@@ -201,8 +201,8 @@ def test_a_mapping_is_read_strictly(words: str, message: str) -> None:
 def test_all_words_of_a_mapping_come_back() -> None:
     toml = head(
         'sheet = "data"\narea = "A1:C9"\nalone = true\nturned = true\nheader_rows = 0\nskip_rows = [4, 5]\n'
-        'stop_at = "END"\nothers = "not read"\nwhen = { Format = "Phase" }\n[table.long]\nparameter = "A"\nvalue = "B"\n'
-        'only = ["x"]\n[[table.pivot]]\nheader = "{frequency}"\nparameter = "gain"\nunit = "dB"\ncolumns = "C:D"\n'
+        'stop_at = "END"\nothers = "not read"\nwhen = { Format = "Phase" }\n[table.long]\nparameter = "A"\n'
+        'value = "B"\nonly = ["x"]\n[[table.pivot]]\nheader = "{frequency}"\nparameter = "gain"\nunit = "dB"\ncolumns = "C:D"\n'
         '[[table.pivot]]\nheader = "{item}"\nparameter = "gain"\nunit = "dB"'
     )
     [mapping] = read_mappings(toml, "m.toml")
