@@ -28,6 +28,7 @@ def magnitude_db(samples: Samples, roles: tuple[str, str] = ENTRY) -> Floats:
     Raises CalculationError where the entry is zero: nothing was measured, or the file cannot say so little.
     """
     first, second = roles
+    _refuse_unmeasured(samples, roles)
     if samples.unit(first).is_log:
         return samples.value(first)
     if _is_polar(samples, second):
@@ -47,7 +48,8 @@ def magnitude_db(samples: Samples, roles: tuple[str, str] = ENTRY) -> Floats:
 
 
 def entry(samples: Samples, roles: tuple[str, str] = ENTRY) -> Complexes:
-    """Return an entry as complex numbers (n,)."""
+    """Return an entry as complex numbers (n,). Raises CalculationError where it was hardly measured."""
+    _refuse_unmeasured(samples, roles)
     first, second = (samples.value(role) for role in roles)
     if not _is_polar(samples, roles[1]):
         parts: Complexes = first + 1j * second
@@ -58,11 +60,29 @@ def entry(samples: Samples, roles: tuple[str, str] = ENTRY) -> Complexes:
 
 
 def angle_deg(samples: Samples, roles: tuple[str, str] = ENTRY) -> Floats:
-    """Return the angle of an entry in degrees (n,): as recorded where it is."""
+    """Return the angle of an entry in degrees (n,): as recorded where it is.
+
+    Raises CalculationError where it was hardly measured.
+    """
+    _refuse_unmeasured(samples, roles)
     if _is_polar(samples, roles[1]):
         return samples.value(roles[1])
     angle: Floats = np.rad2deg(np.angle(entry(samples, roles)))
     return angle
+
+
+def _refuse_unmeasured(samples: Samples, roles: tuple[str, str]) -> None:
+    """Refuse an entry with places where both numbers are exactly 0: a file of every entry has zeros for what was not
+    swept, and those would be a perfect match, no delay, or in dB no loss. One such place among others is left: the
+    first of a simulation that begins at 0 Hz. Common practice, no source.
+    """
+    zero = (samples.value(roles[0]) == 0) & (samples.value(roles[1]) == 0)
+    count = int(np.count_nonzero(zero))
+    if count and (count > 1 or count == len(zero)):
+        raise CalculationError(
+            f"both numbers of the entry are 0 at {count} of {len(zero)} places",
+            hint="an entry of zeros was hardly measured: choose the range in which it was",
+        )
 
 
 def _is_polar(samples: Samples, role: str) -> bool:
