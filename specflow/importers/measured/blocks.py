@@ -19,13 +19,15 @@ from specflow.importers.measured.facts import Fact, read_preamble
 from specflow.importers.measured.header_cells import HeaderCell
 from specflow.importers.measured.header_text import header_key, known_unit
 from specflow.importers.measured.names import name_of
-from specflow.importers.measured.placed import headerless
+from specflow.importers.measured.placed import NAMELESS, headerless
+from specflow.importers.measured.result import Question
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.readers import CellRange, Grid, Value, is_blank, looks_numeric
 from specflow.units import parse_quantity
 
 _RUN = 3
 _WORDS_ABOVE = 12
+_MANY = 8
 _STARTS = frozenset(
     ("xstart", "start", "startfreq", "startfrequency", "startfreqency", "fstart", "freqstart", "xmin")
 )
@@ -90,7 +92,22 @@ def block_table(grid: Grid, top: int, block: int, context: Context) -> FoundTabl
     headers = headers or _named(table, facts, _units_above(grid, block), columns)
     words = _words_above(grid, top, block)
     table = replace(table, grid=cells, headers=headers, top=block, words_above=words, has_words=bool(words))
+    table = replace(table, doubts=_matrix_question(table))
     return replace(table, facts=section_facts(grid, top, block))
+
+
+def _matrix_question(table: FoundTable) -> tuple[Question, ...]:
+    """One question for a block of many columns that nothing names, in the place of one for each column."""
+    nameless = [header for header in table.headers if header.text.startswith(NAMELESS)]
+    if len(nameless) < _MANY:
+        return ()
+    first, last = nameless[0], nameless[-1]
+    what = f"{len(table.rows)} rows of {len(nameless)} columns of numbers without headers ({table.place})"
+    remedy = (
+        f'in a mapping: area = "{table.place}", header_rows = 0, with [table.matrix] for one quantity over two axes '
+        f"(--propose-mapping explains it), or an entry for each of the columns {first.letter} to {last.letter}"
+    )
+    return (Question("", first.cell, what, remedy),)
 
 
 def section_facts(grid: Grid, top: int, row: int) -> tuple[Fact, ...]:

@@ -22,6 +22,7 @@ from specflow.importers.measured.located import LocatedTable
 from specflow.importers.measured.meaning import read_meanings
 from specflow.importers.measured.peak_list import corrected_scans, read_peak_list, with_floors
 from specflow.importers.measured.pivot import stack, with_location
+from specflow.importers.measured.placed import NAMELESS
 from specflow.importers.measured.rejects import Rejects
 from specflow.importers.measured.result import ColumnReading, MeasuredTable, Question, Role
 from specflow.importers.measured.row_kinds import by_row_kind
@@ -117,12 +118,13 @@ def _asked_of_columns(work: TableWork) -> list[Question]:
     """The questions about columns; where it is asked how the table lies, numbers as headers are not asked about."""
     asked = [meaning for meaning in work.meanings if meaning.question]
     if work.table.doubts:
-        asked = [
-            meaning
-            for meaning in asked
-            if not is_reading(meaning.header.text) and not is_item(meaning.header.text, work.context)
-        ]
+        asked = [meaning for meaning in asked if not _is_told(meaning.header.text, work)]
     return [meaning.question for meaning in asked if meaning.question]
+
+
+def _is_told(header: str, work: TableWork) -> bool:
+    """Whether the question how the table lies speaks of this column already."""
+    return is_reading(header) or header.startswith(NAMELESS) or is_item(header, work.context)
 
 
 def _note_idle_entries(work: TableWork) -> None:

@@ -12,6 +12,9 @@ from specflow.importers.measured.mapping_parts import LayoutMapping, MatrixMappi
 from specflow.importers.measured.tables import Axis, FoundTable, Recognises, cut_table, table_below
 from specflow.importers.readers import CellRange, Grid, is_blank
 
+#: How the header of a column without one begins; its number follows.
+NAMELESS = "column #"
+
 _MOST_ROWS_ABOVE = 40
 
 
@@ -66,7 +69,7 @@ def until(grid: Grid, words: str) -> Grid:
 def headerless(grid: Grid, top: int, first: int, recognises: Recognises) -> FoundTable:
     """A table without headers, whose columns go by their numbers."""
     headers = tuple(
-        HeaderCell(column, first, f"column #{column}", turned=grid.turned)
+        HeaderCell(column, first, f"{NAMELESS}{column}", turned=grid.turned)
         for column in range(grid.first_column, grid.last_column + 1)
         if any(not is_blank(value) for value in grid.column(column, first, grid.last_row + 1))
     )
