@@ -1,4 +1,4 @@
-"""What is doubtful in a network file, settled by what was said: x axis, order of the columns, format of the pairs."""
+"""What is doubtful in a network file, settled by what was said: x axis, order of the columns, format, unit of angles."""
 
 from __future__ import annotations
 
@@ -15,7 +15,7 @@ from specflow.importers.readers.touchstone_network import HERTZ, Doubt, DoubtKin
 from specflow.units import compatible, format_unit, parse_unit
 
 #: What may be said of a network, beside what may be said of any table and "port N".
-NETWORK_KEYS = ("x axis", "column order", "format", "derive", "spacing")
+NETWORK_KEYS = ("x axis", "column order", "format", "angles", "derive", "spacing")
 
 _REMEDIES = {
     DoubtKind.X_AXIS: '--state "x axis=frequency" (or "frequency in GHz") if it is one, else its condition: '
@@ -23,6 +23,7 @@ _REMEDIES = {
     DoubtKind.COLUMN_ORDER: '--state "column order=format" if the file keeps to the format, "column order=comment" if '
     "the comment is right",
     DoubtKind.PAIR_FORMAT: "--state format=DB, MA or RI, as the numbers are meant",
+    DoubtKind.ANGLES: "--state angles=degrees, as the format has them, or --state angles=radians",
 }
 
 
@@ -46,11 +47,14 @@ class SettledNetwork:
 
 
 def settle(network: NetworkFile, said: Mapping[str, str]) -> SettledNetwork:
-    """Settle the doubts of a network by what was said ("x axis", "column order", "format"); ask about the rest."""
+    """Settle the doubts of a network by what was said (x axis, column order, format, angles); ask about the rest."""
     settled = SettledNetwork(network, Axis("frequency", network.axis_unit, "the option line"))
     text = said.get("format", "")
     if text:
         _settle_format(settled, text)
+    angles = said.get("angles", "")
+    if angles:
+        _settle_angles(settled, angles)
     order = said.get("column order", "")
     if order:
         _settle_order(settled, order)
@@ -63,6 +67,7 @@ def settle(network: NetworkFile, said: Mapping[str, str]) -> SettledNetwork:
             (DoubtKind.X_AXIS, axis),
             (DoubtKind.COLUMN_ORDER, order),
             (DoubtKind.PAIR_FORMAT, text),
+            (DoubtKind.ANGLES, angles),
         )
         if words
     }
@@ -93,6 +98,26 @@ def _settle_format(settled: SettledNetwork, text: str) -> None:
         f"the pairs were read as {meant.value}, as stated; the option line says {network.pair_format}"
     )
     settled.network = replace(network, pair_format=meant, recorded=recorded, s=recorded)
+
+
+def _settle_angles(settled: SettledNetwork, text: str) -> None:
+    """Degrees are kept as recorded; radians are converted, so that every angle of the store is in degrees."""
+    network, word = settled.network, text.strip().casefold()
+    if word in ("degrees", "degree", "deg"):
+        settled.notes.append("the angles are in degrees, as stated")
+        return
+    if word not in ("radians", "radian", "rad"):
+        what = f"{text!r} is no unit of the angles"
+        settled.questions.append(Question("angles", "", what, _REMEDIES[DoubtKind.ANGLES]))
+        return
+    if network.pair_format is PairFormat.RI or network.parameter != "S":
+        what = f"{network.parameter} parameters in {network.pair_format} have no angles to be stated"
+        settled.questions.append(Question("angles", "", what, "leave the statement out"))
+        return
+    degrees = np.rad2deg(network.second)
+    recorded = complex_of(network.first, degrees, network.pair_format)
+    settled.network = replace(network, second=degrees, recorded=recorded, s=recorded)
+    settled.notes.append("the angles are radians, as stated, and are kept in degrees")
 
 
 def _settle_order(settled: SettledNetwork, text: str) -> None:

@@ -33,7 +33,12 @@ from specflow.importers.readers.touchstone_network import (
     values_per_frequency,
 )
 from specflow.importers.readers.touchstone_option import Option, read_option
-from specflow.importers.readers.touchstone_plausible import axis_doubts, number_remarks, pair_doubts
+from specflow.importers.readers.touchstone_plausible import (
+    angle_doubts,
+    axis_doubts,
+    number_remarks,
+    pair_doubts,
+)
 from specflow.importers.readers.touchstone_rows import (
     NOISE_VALUES,
     Offsets,
@@ -269,6 +274,11 @@ def _with_comments(
         network,
         port_names=told.port_names,
         impedances=told.impedances,
-        doubts=(*axis_doubts(network, option.line), *told.doubts, *pair_doubts(network)),
+        doubts=(
+            *axis_doubts(network, option.line),
+            *told.doubts,
+            *pair_doubts(network),
+            *angle_doubts(network),
+        ),
         remarks=tuple(sorted(remarks, key=lambda one: one.line)),
     )

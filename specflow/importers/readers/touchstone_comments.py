@@ -34,12 +34,12 @@ _OTHER_AXIS = re.compile(
     r"\b(?:p_?in|p_?out|p_?avs?|p_?drive|p_?rf|power|pwr|dbm|v_?bias|voltage|current|bias|temp\w*|time|v_?gs?|v_?ds?)\b",
     re.IGNORECASE,
 )
-_VARIABLE = r"(?:power|pwr|p_?in|level|v_?gs?|bias|voltage|temp(?:erature)?)"
+_VARIABLE = r"(?:power|pwr|p_?in|level|v_?gs?|bias|voltage|temp(?:erature)?|time|cw)"
 _SWEPT = re.compile(
     rf"\b{_VARIABLE}[ _-]+(?:(?:is|was)\s+)?(?:sweep|swept)\b|\bswept[ _-]+{_VARIABLE}\b"
     r"|\b(?:start|stop)(?: power| level)?\s*[=:]?\s*[-+\d.]+\s*dBm\b"
     r"|\bfrom [-+\d.]+(?: ?dBm)? to [-+\d.]+ ?dBm\b"
-    rf"|sweep(?:[ _](?:type|mode|variable|parameter))?\s*[:=]\s*(?:\w+ )*(?:{_VARIABLE}|cw|time)\b"
+    rf"|sweep(?:[ _](?:type|mode|variable|parameter))?\s*[:=]\s*(?:\w+ )*{_VARIABLE}\b"
     r"|x[ -]?axis\s*[:=](?!\s*freq)",
     re.IGNORECASE,
 )
@@ -183,7 +183,9 @@ def _axis_doubts(comments: Sequence[Comment], shape: Shape) -> Iterator[Doubt]:
         swept = _SWEPT.search(comment.text)
         is_header = head and not re.search(r"\d", head) and not _FREQUENCY.search(head)
         header = is_header and _OTHER_AXIS.search(head)
-        if (header and (match is None or len(mentions(comment.text, shape.parameter)) > 1)) or swept:
+        several = match is None or len(mentions(comment.text, shape.parameter)) > 1
+        begins = is_last and _OTHER_AXIS.match(head.strip()) is not None
+        if (header and (several or begins)) or swept:
             what = f"the comment {comment.text[:60]!r} speaks of an x axis that is no frequency"
             yield Doubt(DoubtKind.X_AXIS, comment.line, what)
 

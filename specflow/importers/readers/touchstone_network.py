@@ -57,6 +57,7 @@ class DoubtKind(StrEnum):
     X_AXIS = "x axis"
     COLUMN_ORDER = "column order"
     PAIR_FORMAT = "format"
+    ANGLES = "angles"
 
 
 @dataclass(frozen=True, slots=True)

@@ -25,6 +25,7 @@ from specflow.importers.readers.touchstone_shape import outside_data
 _HIGHEST_HZ, _LOWEST_HZ = 1e13, 1e3
 _HUGE = 10.0
 _FEW = 3
+_SOME_ANGLES, _NEARLY_PI, _PI_AS_WRITTEN = 20, 3.0, 3.1416
 _POINTS = re.compile(r"\b(?:number of )?points\s*[:=]\s*(?P<count>\d+)\b", re.IGNORECASE)
 _EDGE = re.compile(
     r"\b(?P<end>start|stop)(?:[ _]*freq(?:uency)?)?\s*[:=]?\s*(?P<value>\d+(?:\.\d+)?)\s*(?P<unit>[kMG]?Hz)\b",
@@ -46,6 +47,12 @@ def axis_doubts(network: NetworkFile, line: int) -> list[Doubt]:
             "is the unit of the option line right?"
         )
         return [Doubt(DoubtKind.X_AXIS, line, what)]
+    if len(network.axis) > 1 and greatest == float(np.min(network.frequency_hz)):
+        what = (
+            f"all {len(network.axis)} rows have the frequency {network.axis[0]:.12g} {network.axis_unit}: "
+            "what was swept does not stand in the file"
+        )
+        return [Doubt(DoubtKind.X_AXIS, int(network.lines[0]), what)]
     return []
 
 
@@ -86,12 +93,20 @@ def _place(found: NDArray[np.intp]) -> tuple[int, int, int]:
     return k, i, j
 
 
-def number_remarks(network: NetworkFile) -> Iterator[Remark]:
-    """Say where angles look like radians, and where the comments count other points or name other ends."""
+def angle_doubts(network: NetworkFile) -> list[Doubt]:
+    """Doubt angles that fill the range of radians: a delay of them would be 57 times too short."""
     angles = np.abs(network.second)
-    if network.pair_format is not PairFormat.RI and angles.size >= 20 and 3.0 < np.nanmax(angles) <= 3.1416:
-        what = "no angle is beyond 3.1416: they may be in radians, and were read as degrees, as the format has them"
-        yield Remark(int(network.lines[0]), what, warns=True)
+    if network.pair_format is PairFormat.RI or angles.size < _SOME_ANGLES:
+        return []
+    greatest = float(np.nanmax(angles, initial=0.0))
+    if not _NEARLY_PI < greatest <= _PI_AS_WRITTEN:
+        return []
+    what = f"no angle is beyond {greatest:.6g}: they may be in radians; the format has degrees"
+    return [Doubt(DoubtKind.ANGLES, int(network.lines[0]), what)]
+
+
+def number_remarks(network: NetworkFile) -> Iterator[Remark]:
+    """Say where the comments count other points or name other ends."""
     for comment in outside_data(network.comments, network.lines):
         counted = _POINTS.search(comment.text)
         if counted and int(counted["count"]) != len(network.axis):

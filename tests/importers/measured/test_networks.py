@@ -453,3 +453,48 @@ def test_entries_of_zeros_are_said(tmp_path: Path) -> None:
     path = tmp_path / "a.s2p"
     path.write_text("# GHz S RI R 50\n1 0.1 0 2 0 0 0 0 0\n")
     assert "S12, S22: all numbers are 0" in _words(raw(path).notes)
+
+
+@pytest.mark.parametrize(
+    "above",
+    [
+        "! CW time sweep\n# GHz S MA R 50\n",
+        "# GHz S MA R 50\n! Time(s) S11\n",
+        "! Sweep type: CW\n# GHz S MA R 50\n",
+    ],
+)
+def test_a_sweep_over_time_is_no_sweep_over_frequency(tmp_path: Path, above: str) -> None:
+    path = tmp_path / "a.s2p"
+    path.write_text(f"{above}{ROWS}")
+    assert [one.header for one in raw(path).questions] == ["x axis"]
+
+
+def test_a_sweep_time_in_a_header_is_no_x_axis(tmp_path: Path) -> None:
+    path = tmp_path / "a.s2p"
+    path.write_text(f"! Sweep time: 0.5 s, measured at time 12:03\n# GHz S MA R 50\n{ROWS}")
+    assert raw(path).questions == ()
+
+
+def test_rows_of_one_frequency_do_not_say_what_was_swept(tmp_path: Path) -> None:
+    path = tmp_path / "a.s1p"
+    path.write_text("# GHz S MA R 50\n10 0.5 0\n10 0.6 0\n10 0.7 0\n")
+    [question] = raw(path).questions
+    assert question.header == "x axis" and "all 3 rows have the frequency 10 GHz" in question.what
+    assert raw(path, **{"x axis": "frequency"}).questions == ()
+
+
+def test_angles_that_fill_the_range_of_radians_are_asked_and_kept_in_degrees(tmp_path: Path) -> None:
+    path = tmp_path / "a.s1p"
+    angles = np.linspace(-3.1, 3.1, 24)
+    path.write_text(
+        "# GHz S MA R 50\n" + "".join(f"{k} 0.5 {x!r}\n" for k, x in enumerate(angles.tolist(), 1))
+    )
+    [question] = raw(path).questions
+    assert question.header == "angles" and "no angle is beyond 3.1" in question.what
+    asked = raw(path, angles="turns").questions
+    assert [one.what for one in asked] == ["'turns' is no unit of the angles"]
+
+    kept, converted = raw(path, angles="degrees").columns, raw(path, angles="radians").columns
+    assert kept is not None and converted is not None
+    assert kept.values["S11 angle"].low.tolist() == angles.tolist()
+    assert converted.values["S11 angle"].low.tolist() == np.rad2deg(angles).tolist()
