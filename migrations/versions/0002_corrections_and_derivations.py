@@ -51,9 +51,7 @@ def upgrade() -> None:
         integer("target_pk", "key of the evidence_table row"),
         sa.PrimaryKeyConstraint("pk", "position", name="pk_derivation_inputs"),
         sa.ForeignKeyConstraint(["pk"], ["derivation.pk"], name="fk_derivation_inputs_pk"),
-        sa.ForeignKeyConstraint(
-            ["target_pk"], ["evidence_table.pk"], name="fk_derivation_inputs_target_pk"
-        ),
+        sa.ForeignKeyConstraint(["target_pk"], ["evidence_table.pk"], name="fk_derivation_inputs_target_pk"),
         comment="inputs of each derivation",
     )
     op.create_index("ix_derivation_inputs_target_pk", "derivation_inputs", ["target_pk"])

@@ -257,13 +257,19 @@ KNOWN_DIMENSIONS: tuple[KnownDimension, ...] = (
         "gain setting {}",
         ("attenuation", "att", "attenuation setting"),
     ),
-    KnownDimension("theta", "polar angle", _D, "deg", "θ {}", ("θ", "theta angle", "th", "theta cut", "cut theta")),
-    KnownDimension("phi", "azimuthal angle", _D, "deg", "φ {}", ("φ", "ϕ", "phi angle", "ph", "phi cut", "cut phi")),
+    KnownDimension(
+        "theta", "polar angle", _D, "deg", "θ {}", ("θ", "theta angle", "th", "theta cut", "cut theta")
+    ),
+    KnownDimension(
+        "phi", "azimuthal angle", _D, "deg", "φ {}", ("φ", "ϕ", "phi angle", "ph", "phi cut", "cut phi")
+    ),
     KnownDimension("azimuth", "azimuth", _D, "deg", "az {}", ("az", "azimuth angle")),
     KnownDimension("elevation", "elevation", _D, "deg", "el {}", ("el", "elevation angle")),
     KnownDimension("direction_u", "direction cosine u", _N, "", "u {}", ("u cosine", "sin theta cos phi")),
     KnownDimension("direction_v", "direction cosine v", _N, "", "v {}", ("v cosine", "sin theta sin phi")),
-    KnownDimension("cut_angle", "angle within a cut", _P, "deg", "cut angle {}", ("angle in cut", "pattern angle")),
+    KnownDimension(
+        "cut_angle", "angle within a cut", _P, "deg", "cut angle {}", ("angle in cut", "pattern angle")
+    ),
     KnownDimension(
         "cut_plane",
         "plane of a cut",

@@ -98,7 +98,8 @@ class Card(Document):
     """Everything shown of one requirement.
 
     ``facts`` are (name, value) pairs; ``cautions`` the sentences that radiated power or high power call for;
-    ``pictures`` those of the budgets that serve it, ``traces`` those of its raw data; ``findings`` is None as long as the rules have not run.
+    ``pictures`` those of the budgets that serve it, ``traces`` those of its raw data; ``findings`` is None as long
+    as the rules have not run.
     """
 
     id: str

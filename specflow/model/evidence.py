@@ -120,8 +120,8 @@ class EvidenceTable(Document):
     """One recorded table of one source file, or one derived from such tables.
 
     A derived table (``derivation``) keeps the file of its input, its rows point to the raw rows that govern, and
-    ``covers`` says over which ranges its values were taken. ``turned``: the table lies on its side in its sheet, so that
-    ``source_rows`` count columns of the sheet and ``ValueColumn.column`` its rows (``cell`` gives the true place).
+    ``covers`` says over which ranges its values were taken. ``turned``: the table lies on its side in its sheet, so
+    that ``source_rows`` count columns of the sheet and ``ValueColumn.column`` its rows (``cell`` gives the true place).
     ``stated`` are columns of limits and verdicts of the source; ``peaks`` says that the table is a list of peaks.
     """
 

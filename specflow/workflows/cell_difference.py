@@ -110,16 +110,15 @@ def _column_numbers(letters: TextColumn) -> Keys:
 def _unequal(one: _Numbers, other: _Numbers | None) -> Keys:
     """The keys of stored cells that are not read as they are stored; an empty one that is filled now is new."""
     here = ~np.isnan(one.low)
-    if other is None:
+    if other is None or not len(other.keys):
         return one.keys[here]
     order = np.argsort(other.keys, kind="stable")
     place = np.searchsorted(other.keys[order], one.keys)
-    place = order[np.minimum(place, len(order) - 1)] if len(order) else np.zeros(len(one.keys), np.intp)
-    if not len(order):
-        return one.keys[here]
+    place = order[np.minimum(place, len(order) - 1)]
     known = other.keys[place] == one.keys
     same = known & (other.low[place] == one.low) & (other.high[place] == one.high) & (other.unit == one.unit)
-    return one.keys[here & ~same]
+    differing: Keys = one.keys[here & ~same]
+    return differing
 
 
 def _told(table: EvidenceTable, one: _Numbers, other: _Numbers | None, key: int) -> CellDifference:

@@ -139,7 +139,9 @@ def test_the_proof_grid_says_the_point_under_its_cursor() -> None:
         await pressed(pilot, "n", "g")
         grid = app.focused
         assert isinstance(grid, ProofGridView)
-        assert grid.cell is not None and grid.cell.state is PointState.WITHOUT_EVIDENCE, "it begins at what is open"
+        assert grid.cell is not None and grid.cell.state is PointState.WITHOUT_EVIDENCE, (
+            "it begins at what is open"
+        )
         await pressed(pilot, "up", "left", "left", "left")
         assert grid.cursor == Place(0, 0) and grid.cell.words == "27.5 GHz, -40 °C ambient"
         assert "pa_bench.xlsx · Bench 1 · D10" in screen_text(app)

@@ -59,7 +59,7 @@ def _turned(grid: Grid, region: Region, context: Context) -> FoundTable:
 
 
 def _with_units_below(table: FoundTable) -> FoundTable:
-    """Take units that stand behind the readings ("Gain | 20.5 | dB"): a row, as the table is turned, of nothing else."""
+    """Take units that stand behind the readings ("Gain | 20.5 | dB"): turned, they are a row of nothing else."""
     if table.units_row is not None:
         return table
     for row in table.rows.tolist():
