@@ -1,4 +1,4 @@
-"""What is doubtful in a network file, settled by what was said: x axis, order of the columns, format, unit of angles."""
+"""What is doubtful in a network, settled by what was said: x axis, order of the columns, format, unit of angles."""
 
 from __future__ import annotations
 
