@@ -10,12 +10,15 @@ from specflow.importers.measured.context import Context
 from specflow.importers.measured.header_text import header_key, known_unit, read_header
 from specflow.importers.measured.mapping_parts import UNLOCATED, PivotMapping
 from specflow.importers.measured.quantity_text import name_quantity
+from specflow.importers.measured.result import Question
 from specflow.importers.measured.tables import FoundTable
 from specflow.parameters import suits
 
 _AMOUNT = re.compile(
     r"@\s*(?P<number>[+\-−]?\s?[0-9]+(?:[.,][0-9]+)?)\s*(?P<unit>°\s?[CFK]|[kMGT]?Hz|K|degC)(?=\s*(?:$|[(\[]))"
 )
+
+_MANY = 4
 
 #: Quantities over an offset or at a spacing: a frequency behind their "@" is not the one that was set.
 _OF_OFFSETS = frozenset(
@@ -26,8 +29,13 @@ _OF_OFFSETS = frozenset(
 )  # fmt: skip
 
 
-def pivots_of_headers(table: FoundTable, context: Context) -> tuple[PivotMapping, ...]:
-    """Return one pivot for each quantity whose headers state a frequency or a temperature behind "@"."""
+def pivots_of_headers(
+    table: FoundTable, context: Context
+) -> tuple[tuple[PivotMapping, ...], tuple[Question, ...]]:
+    """Return one pivot for each quantity whose headers state a frequency or a temperature behind "@".
+
+    Many such headers that name no quantity make one question.
+    """
     found: dict[str, list[int]] = defaultdict(list)
     dimensions: dict[str, tuple[str, str]] = {}
     columns = {dimension.name for dimension in _dimensions(table)}
@@ -42,12 +50,29 @@ def pivots_of_headers(table: FoundTable, context: Context) -> tuple[PivotMapping
         template = f"{header.text[: amount.start('number')]}{{{name}}}{header.text[amount.end('number') :]}"
         found[template].append(place)
         dimensions[template] = name, amount["unit"].replace(" ", "")
-    pivots = []
+    pivots, doubts = [], []
     for template, places in found.items():
         pivot = _pivot(table, template, places, dimensions[template], context)
         if pivot is not None:
             pivots.append(pivot)
-    return tuple(pivots)
+        elif len(places) >= _MANY:
+            doubts.append(_question(table, template, places, *dimensions[template]))
+    return tuple(pivots), tuple(doubts)
+
+
+def states_condition(header: str) -> bool:
+    """Whether a header states a condition behind "@"."""
+    return _AMOUNT.search(header) is not None
+
+
+def _question(table: FoundTable, template: str, places: list[int], name: str, unit: str) -> Question:
+    first, last = table.headers[places[0]], table.headers[places[-1]]
+    what = f"{len(places)} columns from {first.letter} to {last.letter} are headed {template!r}; of which quantity"
+    remedy = (
+        f'in a mapping: [table.pivot] header = "{template}", parameter, unit, units = {{ {name} = "{unit}" }}; what '
+        "stands before the @ may be a condition, too: {polarisation} @ ..."
+    )
+    return Question("", first.cell, what, remedy)
 
 
 def _dimensions(table: FoundTable) -> list[KnownDimension]:

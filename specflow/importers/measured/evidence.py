@@ -8,6 +8,7 @@ from typing import TypeVar
 
 import numpy as np
 
+from specflow.importers.measured.at_headers import states_condition
 from specflow.importers.measured.axis import add_axis
 from specflow.importers.measured.column import ColumnMeaning
 from specflow.importers.measured.conditions import merged_items, read_conditions
@@ -124,7 +125,8 @@ def _asked_of_columns(work: TableWork) -> list[Question]:
 
 def _is_told(header: str, work: TableWork) -> bool:
     """Whether the question how the table lies speaks of this column already."""
-    return is_reading(header) or header.startswith(NAMELESS) or is_item(header, work.context)
+    is_told = header.startswith(NAMELESS) or states_condition(header)
+    return is_told or is_reading(header) or is_item(header, work.context)
 
 
 def _note_idle_entries(work: TableWork) -> None:

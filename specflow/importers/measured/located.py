@@ -17,7 +17,7 @@ from specflow.importers.measured.place_facts import facts_of_cells
 from specflow.importers.measured.placed import clipped, first_row_above, table_in_area
 from specflow.importers.measured.settled import GivenMappings, Mappings, Settled, kept_under
 from specflow.importers.measured.stating import holds_below
-from specflow.importers.measured.tables import FoundTable, cut_table, rows_of_numbers
+from specflow.importers.measured.tables import FoundTable, cut_table, fills_blanks, rows_of_numbers
 from specflow.importers.measured.titles import with_titles
 from specflow.importers.readers import CellRange, Grid
 
@@ -144,8 +144,10 @@ class _Locator:
         sheet_facts: Iterable[Fact],
     ) -> None:
         mapping = settled.mapping if settled else LayoutMapping()
-        if mapping.header_rows > 1 and not mapping.area:
-            rows = mapping.header_rows
+        rows = mapping.header_rows
+        if rows == 1 and not any("_" in entry.header for entry in mapping.columns) and fills_blanks(table):
+            rows = 2
+        if rows > 1 and not mapping.area:
             table = cut_table(table.grid, table.top, table.header_row, rows, self._context.recognises)
         from_cells, doubts = facts_of_cells(self._grid, table, mapping)
         facts = (*from_cells, *facts)

@@ -58,8 +58,8 @@ def _recognised_pivots(
     """Pivots that the headers state beyond doubt, and questions about others."""
     if table.pivots:
         return table.pivots, ()
-    at_headers = pivots_of_headers(table, context)
-    return (at_headers, ()) if at_headers else item_pivots(table, context)
+    at_headers, doubts = pivots_of_headers(table, context)
+    return (at_headers, doubts) if at_headers or doubts else item_pivots(table, context)
 
 
 def _is_settled(mapping: LayoutMapping) -> bool:

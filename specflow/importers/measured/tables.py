@@ -8,6 +8,7 @@ inside it are stepped over. Several tables below each other are found one after 
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterator
 
 from specflow.importers.measured.found_table import Axis, FoundTable, Remark
@@ -31,6 +32,7 @@ __all__ = [
     "Recognises",
     "Remark",
     "cut_table",
+    "fills_blanks",
     "find_header",
     "find_tables",
     "rows_of_numbers",
@@ -74,6 +76,13 @@ def table_below(
 ) -> FoundTable:
     """Return the table of these headers whose data begin in row ``first``."""
     return TableBody(grid, headers, first, recognises).table(top, header_row, units_row)
+
+
+def fills_blanks(table: FoundTable) -> bool:
+    """Whether the row below the headers fills their blanks: "H @ _ MHz" over 965 is "H @ 965 MHz"."""
+    blank = [header.column for header in table.headers if re.search(r"(?<!\w)_(?!\w)", header.text)]
+    row = table.header_row + 1
+    return len(blank) > 1 and all(is_reading(table.grid.value(row, column)) for column in blank)
 
 
 def rows_of_numbers(grid: Grid, top: int, stop: int) -> Iterator[int]:

@@ -263,3 +263,23 @@ def test_a_serial_with_as_many_words_as_there_are_columns(tmp_path: Path) -> Non
     content = "DUT: SN 12\n\nAzimuth (deg)\tGain (dBi)\tEIRP (dBm)\n" + body
     table = taken(one_table(text(tmp_path / "a.txt", content), stated={"block": "LNA"}))
     assert table.columns is not None and table.columns.items.labels == ("SN 12",)
+
+
+def test_a_second_row_fills_the_blanks_of_the_headers(tmp_path: Path) -> None:
+    rows = [
+        ["Azimuth (deg)", "Gain @ _ GHz (dBi)", "Gain @ _ GHz (dBi)"],
+        [None, 27.5, 30],
+        [0, 20, 21],
+        [5, 19, 20],
+    ]
+    table = taken(one_table(book(tmp_path / "a.xlsx", rows)))
+    assert conditions(table)["frequency"] == [27.5, 27.5, 30, 30] and values(table) == [20, 19, 21, 20]
+
+
+def test_many_columns_that_nothing_names_make_one_question(tmp_path: Path) -> None:
+    body = "\n".join(",".join(str(10 * row + column + 0.5) for column in range(12)) for row in range(6))
+    table = one_table(text(tmp_path / "a.csv", body + "\n"))
+    assert len(table.questions) == 1 and "6 rows of 12 columns of numbers without headers" in questions(table)
+    rows = [["f (GHz)", *(f"X @ {step} °C" for step in (-20, 0, 25, 70))], [27.5, 1, 2, 3, 4]]
+    table = one_table(book(tmp_path / "b.xlsx", rows))
+    assert "4 columns from B to E are headed 'X @ {temperature} °C'" in questions(table)
