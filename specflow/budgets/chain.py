@@ -39,7 +39,6 @@ class ReadLine:
     role: Role
     convert: Converter
     values: Floats
-    is_override: bool = False
     least: float = -math.inf
     most: float = math.inf
 

@@ -114,7 +114,7 @@ class _Reader:
             values = values + self._worse(line, where) * line.growth
         position = self.budget.chain[self.rows[line.position]]
         ends = physical_ends(line, role, convert, is_passive=position.passive)
-        read = ReadLine(line, self.rows[line.position], role, convert, values, given is not None, *ends)
+        read = ReadLine(line, self.rows[line.position], role, convert, values, *ends)
         check_line(read, position, where)
         return read
 

@@ -210,10 +210,6 @@ class Reader:
         """Take a name: a letter, then letters, digits, underscores; parts may be joined by dots."""
         return self.take_pattern(_NAME)
 
-    def sees_name(self) -> bool:
-        """True when a name is next."""
-        return _NAME.match(self.text, self.place) is not None
-
     def sees_call(self) -> bool:
         """True when a function and its opening parenthesis are next."""
         return _CALL.match(self.text, self.place) is not None

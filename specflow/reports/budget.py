@@ -46,7 +46,6 @@ FIGURE_TITLES = {
     "allowed_rise": ("Rise allowed", "dB"),
     "amount": ("Contribution", ""),
 }
-_FIXED = {"gain": 2, "noise_figure": 2}
 Named = Callable[[str], str]
 
 

@@ -12,8 +12,6 @@ from specflow.model.derivation import Derivation
 from specflow.model.evidence import EvidenceTable, Supersession, Withdrawal
 from specflow.model.snapshot import Snapshot
 
-REMEDY = "specflow derive --again derives it from what stands"
-
 
 def outdated_tables(
     snapshot: Snapshot,

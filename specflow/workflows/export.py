@@ -25,7 +25,7 @@ from specflow.workflows.budget_parts import BudgetParts, budget_parts
 from specflow.workflows.evaluate_project import Evaluation, evaluate_project
 
 TABLES = ("summary", "matrix", "points", "evidence", "findings", "budgets", "about")
-MOST_TRACES_ON_A_PAGE = 40  # drawings of raw data; all stand in the terminal, on the card of their requirement
+MOST_TRACES_ON_A_PAGE = 40  # drawings of raw data; every one stands in the terminal, on the card
 MOST_POINTS_ON_A_PAGE = 20_000  # a browser lays out no more rows than this in reasonable time
 
 

@@ -6,7 +6,7 @@ A plan names a law and the columns it reads; the laws themselves are not known h
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field, replace
 
 from specflow.importers.measured.context import Context
@@ -288,5 +288,3 @@ _LAWS: dict[str, Make] = {
     "noise_figure": _noise_figure,
     "active_reflection": _active,
 }
-
-DERIVABLE: Sequence[str] = tuple(_LAWS)

@@ -20,7 +20,6 @@ _MOST_SETTINGS = 6
 _MOST_WORDS = 4
 
 _NUMBER = re.compile(r"[<>≤≥]?\s*[+\-−]?(?:[0-9]+(?:[.,][0-9]*)?|[.,][0-9]+)(?:[eE][+\-−]?[0-9]+)?\s*%?")
-_WITH_COMMA = re.compile(r"[^,]*[0-9]*,[0-9]+[^,]*")
 _SETTING = re.compile(r"[^0-9:=,][^:=,]*[:=]\s*[+\-−]?[0-9]+")
 _COMMA_IN_NUMBER = re.compile(r"[0-9],[0-9]")
 _WITH_THOUSANDS = re.compile(r"[+\-−]?[0-9]{1,3}(?:[ \u00a0\u202f'][0-9]{3})+[.,][0-9]+")
