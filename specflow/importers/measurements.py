@@ -229,6 +229,7 @@ def _proposal(located: Sequence[LocatedTable], read: Sequence[ReadTable]) -> str
                 [one.read_as for one, _ in parts],
                 first.preamble.facts,
                 first.preamble.title,
+                [doubt for one, _ in parts for doubt in one.table.doubts],
             )
         )
     return propose(proposals)

@@ -193,7 +193,7 @@ def _question(one: FoundTable, other: FoundTable) -> Question:
         f'in a mapping: one [[table]] with area = "{one.place}" and one with area = "{other.place}", or one '
         f'with area = "{first}{rows[0]}:{last}{rows[1]}"'
     )
-    return Question("", one.headers[0].cell, what, remedy)
+    return Question("", "", what, remedy)
 
 
 def _at_repeats(grid: Grid, context: Context) -> Strips | None:

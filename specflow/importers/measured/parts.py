@@ -15,7 +15,7 @@ from specflow.importers.measured.header_text import read_header
 from specflow.importers.measured.item_headers import item_pivots
 from specflow.importers.measured.long_form import find_long, long_parts
 from specflow.importers.measured.mapping_parts import ColumnMapping, LayoutMapping, PivotMapping
-from specflow.importers.measured.place_facts import stated_here
+from specflow.importers.measured.place_facts import is_reference, stated_here
 from specflow.importers.measured.placed import pivot_of
 from specflow.importers.measured.quantity_text import name_quantity
 from specflow.importers.measured.result import Question, Role
@@ -41,10 +41,11 @@ def parts_of(table: FoundTable, mapping: LayoutMapping, context: Context) -> lis
     if table.pivots and not mapping.pivots:
         read_as = _with_axis(table, read_as)
     if mapping.pivots or _is_settled(mapping):
-        pivots, table = tuple(mapping.pivots), replace(table, doubts=())
+        pivots = tuple(mapping.pivots)
     else:
         pivots, doubts = _recognised_pivots(table, context)
         table = replace(table, doubts=(*table.doubts, *doubts))
+    table = replace(table, doubts=tuple(one for one in table.doubts if not _settles(mapping, table, one)))
     if pivots and (len(pivots) > 1 or _values_beside(table, replace(read_as, pivots=pivots), context)):
         return _pivot_parts(table, replace(read_as, pivots=pivots), context)
     if not pivots:
@@ -60,6 +61,21 @@ def _recognised_pivots(
         return table.pivots, ()
     at_headers, doubts = pivots_of_headers(table, context)
     return (at_headers, doubts) if at_headers or doubts else item_pivots(table, context)
+
+
+def _settles(mapping: LayoutMapping, table: FoundTable, doubt: Question) -> bool:
+    """Whether a mapping answers a question how the table lies: by a pivot, by a condition from a cell, or by what it says
+    of the very column that is asked about. A question without a cell is answered by areas alone."""
+    if not doubt.cell:
+        return False
+    if any(map(is_reference, mapping.stated.values())):
+        return True
+    for header in table.headers:
+        if header.cell == doubt.cell:
+            entry = mapping.column(header.text, header.letter)
+            told = entry is not None and bool(entry.role or entry.parameter or entry.dimension)
+            return told or any(pivot.is_about(header.text, header.letter) for pivot in mapping.pivots)
+    return False
 
 
 def _is_settled(mapping: LayoutMapping) -> bool:

@@ -11,7 +11,7 @@ from specflow.importers.measured.facts import Fact
 from specflow.importers.measured.header_text import header_key
 from specflow.importers.measured.layout import sheet_pattern
 from specflow.importers.measured.mapping import FORMAT, ColumnMapping, LayoutMapping, write_mapping
-from specflow.importers.measured.result import Role
+from specflow.importers.measured.result import Question, Role
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.readers import looks_numeric
 from specflow.model.evidence import SpectrumKind
@@ -47,7 +47,7 @@ class Proposal:
     """One table as it was understood: its layout, the mapping it was read by, what it was parted into, what was said.
 
     ``parts`` are the meanings of its columns, for each part; ``facts`` what stands above it; ``read_as`` the mapping
-    that each part was read by.
+    that each part was read by; ``doubts`` are the questions how it lies.
     """
 
     table: FoundTable
@@ -57,6 +57,7 @@ class Proposal:
     read_as: Sequence[LayoutMapping]
     facts: Sequence[Fact]
     title: str
+    doubts: Sequence[Question] = ()
 
 
 def propose(proposals: Sequence[Proposal]) -> str:
@@ -90,10 +91,16 @@ def telling_facts(facts: Sequence[Sequence[Fact]]) -> list[dict[str, str]]:
 def _columns(one: Proposal, is_shared: bool) -> list[ColumnMapping]:
     """The entries of all parts, each column once; without letters where several tables of the file have this layout."""
     entries: dict[tuple[str, str], ColumnMapping] = {}
+    asked = {doubt.cell for doubt in one.doubts}
     for meanings in one.parts:
         for meaning in meanings:
             if meaning.role is not Role.PIVOT:
-                entries.setdefault((meaning.header.text, meaning.letter), _entry(meaning, one.mapping))
+                entry = _entry(meaning, one.mapping)
+                if meaning.header.cell in asked:
+                    entry = ColumnMapping(
+                        header=entry.header, column=entry.column
+                    )  # the person has to answer
+                entries.setdefault((meaning.header.text, meaning.letter), entry)
     texts = [header_key(text) for text, _ in entries]
     if not is_shared or len(set(texts)) < len(texts):
         return list(entries.values())
@@ -119,7 +126,8 @@ def _written(one: Proposal, columns: Sequence[ColumnMapping], when: Mapping[str,
         long=one.mapping.long or one.table.long,
         when=one.mapping.when or when,
     )
-    return write_mapping(mapping, reasons)
+    settle = [f"# TO SETTLE. {doubt.what}\n# {doubt.remedy}\n" for doubt in dict.fromkeys(one.doubts)]
+    return "".join(settle) + write_mapping(mapping, reasons)
 
 
 def _reason(meaning: ColumnMeaning) -> str:

@@ -283,3 +283,24 @@ def test_many_columns_that_nothing_names_make_one_question(tmp_path: Path) -> No
     rows = [["f (GHz)", *(f"X @ {step} °C" for step in (-20, 0, 25, 70))], [27.5, 1, 2, 3, 4]]
     table = one_table(book(tmp_path / "b.xlsx", rows))
     assert "4 columns from B to E are headed 'X @ {temperature} °C'" in questions(table)
+
+
+@pytest.mark.parametrize(
+    "rows",
+    [
+        [
+            ["f (GHz)", "Gain (dB)", None, "Baseplate (°C)", "NF (dB)"],
+            [27.5, 20, None, -20, 1.5],
+            [28, 21, None, 25, 1.6],
+        ],
+        [["Parameter", "27.5 GHz", "28 GHz"], ["Gain (dB)", 20, 21], ["NF (dB)", 1.5, 1.6]],
+        [["f (GHz)", -20, 25, 70], [27.5, 20, 19, 18], [28, 21, 20, 19]],
+    ],
+)
+def test_a_proposal_that_nobody_edited_answers_no_question(tmp_path: Path, rows: list[list[Any]]) -> None:
+    path = book(tmp_path / "a.xlsx", rows)
+    first = measure(path)
+    assert "# TO SETTLE." in first.proposal
+    again = measure(path, mapping=first.proposal)
+    assert [table.document for table in again.tables] == [None]
+    assert questions(again.tables[0]) == questions(first.tables[0])

@@ -202,7 +202,8 @@ def test_all_words_of_a_mapping_come_back() -> None:
     toml = head(
         'sheet = "data"\narea = "A1:C9"\nalone = true\nturned = true\nheader_rows = 0\nskip_rows = [4, 5]\n'
         'stop_at = "END"\nothers = "not read"\nwhen = { Format = "Phase" }\n[table.long]\nparameter = "A"\n'
-        'value = "B"\nonly = ["x"]\n[[table.pivot]]\nheader = "{frequency}"\nparameter = "gain"\nunit = "dB"\ncolumns = "C:D"\n'
+        'value = "B"\nonly = ["x"]\n[[table.pivot]]\nheader = "{frequency}"\nparameter = "gain"\n'
+        'unit = "dB"\ncolumns = "C:D"\n'
         '[[table.pivot]]\nheader = "{item}"\nparameter = "gain"\nunit = "dB"'
     )
     [mapping] = read_mappings(toml, "m.toml")
