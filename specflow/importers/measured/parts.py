@@ -64,8 +64,11 @@ def _recognised_pivots(
 
 
 def _settles(mapping: LayoutMapping, table: FoundTable, doubt: Question) -> bool:
-    """Whether a mapping answers a question how the table lies: by a pivot, by a condition from a cell, or by what it says
-    of the very column that is asked about. A question without a cell is answered by areas alone."""
+    """Whether a mapping answers a question how the table lies.
+
+    It does by a pivot, by a condition from a cell, or by what it says of the very column that is asked about. A
+    question without a cell is answered by areas alone.
+    """
     if not doubt.cell:
         return False
     if any(map(is_reference, mapping.stated.values())):
