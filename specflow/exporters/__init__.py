@@ -1,7 +1,8 @@
 """Report → bytes. One file a format, all with the same surface (``title``, ``extension``, ``render(report)``).
 
 A writer renders what a report says and nothing else: it looks nothing up, computes nothing and rounds nothing.
-``template.py`` writes the empty project workbook that people fill in.
+``template.py`` writes the empty project workbook that people fill in, ``bench_sheet.py`` the test sheet for the bench;
+``svg.py`` draws pictures; ``files.py`` puts bytes into a file, whole or not at all.
 """
 
 from __future__ import annotations

@@ -13,7 +13,7 @@ from pathlib import Path
 from textwrap import wrap
 from typing import TYPE_CHECKING, Any
 
-from specflow.errors import FileError
+from specflow.exporters.files import write_file
 from specflow.exporters.guide import LIMITS_HEAD, PARAMETERS_HEAD, limit_pairs, parameter_pairs
 from specflow.model.sheet import GUIDE, SheetColumn, SheetLayout
 from specflow.parameters import load_dictionary
@@ -45,22 +45,7 @@ def write_template(layouts: Sequence[SheetLayout], path: str | Path) -> None:
 
     Raises FileError when the file exists already (it may be filled in) or cannot be written.
     """
-    path = Path(path)
-    if path.exists():
-        raise FileError(
-            "the file exists already", where=str(path), hint="choose another name, or move the file away"
-        )
-    content = template_bytes(layouts)
-    part = path.with_name(path.name + ".part")
-    try:
-        part.write_bytes(content)
-        part.replace(path)
-    except OSError as error:
-        part.unlink(missing_ok=True)
-        reason = error.strerror or str(error)
-        raise FileError(
-            f"the file cannot be written: {reason}", where=str(path), hint="check folder and space"
-        ) from error
+    write_file(Path(path), template_bytes(layouts), remedy="it may be filled in; name another one")
 
 
 def template_bytes(layouts: Sequence[SheetLayout]) -> bytes:

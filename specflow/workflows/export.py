@@ -8,8 +8,9 @@ from dataclasses import dataclass
 from datetime import date
 from pathlib import Path
 
-from specflow.errors import FileError, SpecflowError
+from specflow.errors import SpecflowError
 from specflow.exporters import WRITERS, writer
+from specflow.exporters.files import write_file
 from specflow.model.budget import Budget
 from specflow.model.report import Report, ReportPicture, ReportTable
 from specflow.reports.about import about_table, cautions
@@ -138,40 +139,8 @@ def write_export(export: Export, path: Path, *, overwrite: bool = False) -> None
 
     FileError when the file exists and may not be overwritten, or cannot be written.
     """
-    if path.exists() and not path.is_file():
-        raise FileError(
-            f"this is {'a folder' if path.is_dir() else 'no plain file'}, and is not written over",
-            where=str(path),
-            hint="name a file with -o; -o - writes to stdout",
-        )
-    if path.is_file() and _is_project(path):
-        raise FileError(
-            "this is a project, and is never written over", where=str(path), hint="name another file with -o"
-        )
-    if path.exists() and not overwrite:
-        raise FileError(
-            "the file exists already", where=str(path), hint="say --overwrite, or name another file with -o"
-        )
-    part = path.with_name(path.name + ".part")
-    try:
-        part.write_bytes(export.content)
-        part.replace(path)
-    except OSError as error:
-        part.unlink(missing_ok=True)
-        raise FileError(
-            f"the file cannot be written: {error.strerror or error}",
-            where=str(path),
-            hint="check the folder and the space left; a spreadsheet program may hold the file open",
-        ) from error
-
-
-def _is_project(path: Path) -> bool:
-    """Whether a file is a database, which a report would destroy; one that cannot be read may be one."""
-    try:
-        with path.open("rb") as file:
-            return file.read(16) == b"SQLite format 3\0"
-    except OSError:
-        return True
+    remedy = "say --overwrite, or name another file with -o"
+    write_file(path, export.content, overwrite=overwrite, remedy=remedy)
 
 
 def format_for(path: str, format: str) -> str:

@@ -8,6 +8,7 @@ from dataclasses import dataclass
 from pathlib import Path, PurePosixPath
 
 from specflow.errors import DocumentError, FileError
+from specflow.exporters.files import write_file
 from specflow.importers.readers import FileFingerprint, read_source
 from specflow.model.base import code_key
 from specflow.model.evidence import EvidenceFile
@@ -101,22 +102,8 @@ def write_kept(copy: KeptCopy, target: Path | None, *, overwrite: bool = False) 
     """
     path = Path(Path(copy.file.name).name) if target is None else target
     path = path / Path(copy.file.name).name if path.is_dir() else path
-    if path.exists() and not overwrite:
-        raise FileError(
-            "the file exists already", where=str(path), hint="name another one with -o, or say --overwrite"
-        )
-    part = path.with_name(f"{path.name}.part")
-    try:
-        part.write_bytes(copy.content)
-        part.replace(path)
-    except BaseException as error:
-        part.unlink(missing_ok=True)
-        if not isinstance(error, OSError):
-            raise
-        reason = error.strerror or str(error)
-        raise FileError(
-            f"the file cannot be written: {reason}", where=str(path), hint="check folder and space"
-        ) from error
+    remedy = "say --overwrite, or name another file with -o"
+    write_file(path, copy.content, overwrite=overwrite, remedy=remedy)
     return path
 
 

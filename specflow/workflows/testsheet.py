@@ -8,8 +8,9 @@ from datetime import date
 from pathlib import Path
 from typing import Any
 
-from specflow.errors import DocumentError, FileError
+from specflow.errors import DocumentError
 from specflow.exporters.bench_sheet import bench_sheet_bytes
+from specflow.exporters.files import write_file
 from specflow.model.base import code_key
 from specflow.model.bench_sheet import BenchWorkbook
 from specflow.model.block import Block
@@ -50,22 +51,7 @@ def testsheet(store: ProjectStore, as_of: date, scope: Scope) -> TestSheet:
 
 def write_testsheet(sheet: TestSheet, path: Path) -> None:
     """Write a test sheet to a file that must not exist (it may be filled in). FileError, and nothing half-written."""
-    if path.exists():
-        raise FileError(
-            "the file exists already", where=str(path), hint="it may be filled in; name another one"
-        )
-    part = path.with_name(f"{path.name}.part")
-    try:
-        part.write_bytes(sheet.content)
-        part.replace(path)
-    except BaseException as error:
-        part.unlink(missing_ok=True)
-        if not isinstance(error, OSError):
-            raise
-        reason = error.strerror or str(error)
-        raise FileError(
-            f"the file cannot be written: {reason}", where=str(path), hint="check folder and space"
-        ) from error
+    write_file(path, sheet.content, remedy="it may be filled in; name another one")
 
 
 def _check(snapshot: Snapshot, scope: Scope) -> None:

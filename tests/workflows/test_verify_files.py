@@ -209,6 +209,8 @@ def test_a_kept_copy_stands_in_for_an_original_that_is_gone(store: ProjectStore,
     assert write_kept(copy, tmp_path, overwrite=True) == path and path.read_bytes() == content
     with pytest.raises(FileError, match="cannot be written"):
         write_kept(copy, tmp_path / "none" / "out.xlsx")
+    with pytest.raises(FileError, match="is a project"):
+        write_kept(copy, tmp_path / "p.specflow", overwrite=True)
     edit(path, C2=21)
     assert states(verify_files(store)) == ["moved"]  # the written copy has the bytes
     out.unlink()
