@@ -243,11 +243,12 @@ def test_a_hole_in_a_trace_leaves_one_range_without_a_flatness(evaluation: Evalu
     assert "left-out-cells" in rules_about(evaluation, derived.id)
 
 
-def test_a_hidden_row_is_left_out_and_stays_a_finding_and_a_mean_is_no_reading(evaluation: Evaluation) -> None:
+def test_hidden_row_and_mean_are_left_out_and_stay_a_finding(evaluation: Evaluation) -> None:
     (table,) = [one for one in evaluation.snapshot.all(EvidenceTable) if one.sheet == "Upconverter"]
     reasons = {left_out.cell: left_out.reason for left_out in table.left_out}
-    assert set(reasons) == {"A20"}  # row 21 is the mean of the others: told at import, rejects nothing
+    assert set(reasons) == {"A20", "A21"}
     assert "hidden" in reasons["A20"]
+    assert "summary" in reasons["A21"]
     assert table.rows == 8
     assert "left-out-cells" in rules_about(evaluation, table.id)
     for requirement in ("UPC-GAI-1", "UPC-P1D-1", "UPC-IRJ-1", "UPC-LOL-1", "UPC-EVM-1"):
