@@ -17,7 +17,7 @@ from specflow.errors import FileError
 from specflow.importers.readers.encoding import decode
 from specflow.importers.readers.source import Source
 from specflow.importers.readers.touchstone_comments import read_comments
-from specflow.importers.readers.touchstone_lines import FileLines, OptionText, read_lines, refusal
+from specflow.importers.readers.touchstone_lines import FileLines, OptionText, read_lines
 from specflow.importers.readers.touchstone_matrix import (
     complex_of,
     denormalised,
@@ -30,6 +30,7 @@ from specflow.importers.readers.touchstone_network import (
     NetworkFile,
     NoiseBlock,
     Remark,
+    refusal,
     values_per_frequency,
 )
 from specflow.importers.readers.touchstone_option import Option, read_option
@@ -54,7 +55,7 @@ DEFAULT_OHM = 50.0
 
 _HEAD_BYTES = 16384
 _WHOLE_OPTION = re.compile(
-    r"#\s*(?=.*\b[kMG]?Hz\b)(?=.*\b[SYZGH]\b)(?=.*\b(?:DB|MA|RI)\b)[\w\s.+-]*(?:!.*)?$", re.IGNORECASE
+    r"#\s*(?=.*\b[kMGT]?Hz\b)(?=.*\b[SYZGH]\b)(?=.*\b(?:DB|MA|RI)\b)[\w\s.+-]*(?:!.*)?$", re.IGNORECASE
 )
 _ENDING = re.compile(r"\.s(?P<ports>\d{1,4})p", re.IGNORECASE)
 
@@ -93,7 +94,7 @@ def read_network(source: Source) -> NetworkFile:
     name = source.name
     lines = read_lines(text, name)
     option = _option(lines, name)
-    remarks = _option_remarks(lines, option)
+    remarks = [*lines.remarks, *_option_remarks(lines, option)]
     sections = read_sections(lines, name) if lines.keywords else None
     if sections is None:
         rows = rows_of_version_1(lines, ports_by_ending(name), name)

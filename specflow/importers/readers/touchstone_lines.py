@@ -1,6 +1,7 @@
 """The lines of a Touchstone file: numbers with their places, comments, keywords, option lines; nothing is understood.
 
-Numbers are read strictly: what ``float`` takes beyond the format (1_0, digits of other scripts) is refused.
+Two things of other programs are let pass: a mark of the end of the file (0x1A), and, which is said, a line of column
+names that is not marked as a comment.
 """
 
 from __future__ import annotations
@@ -11,12 +12,11 @@ from dataclasses import dataclass, field
 import numpy as np
 from numpy.typing import NDArray
 
-from specflow.errors import FileError
-from specflow.importers.readers.touchstone_network import Comment, Floats, Hole, Places
+from specflow.importers.readers.touchstone_network import Comment, Floats, Hole, Places, Remark, refusal
+from specflow.importers.readers.touchstone_numbers import is_number_or_none, part_words, read_values
 
-_PLAIN = b"0123456789+-.eE "
-_NO_NUMBER = re.compile(r"[+-]?(?:nan|inf|infinity|1\.#\w+|1,#\w+|#n/?a|n/?a|-{2,})", re.IGNORECASE)
-_OVERFLOW = 9.9e36
+_DOS_END = "\x1a"
+_NAMES_COLUMNS = re.compile(r"freq|(?:^|[^a-z])[SYZGH][ _]?[(\[]?\d", re.IGNORECASE)
 
 
 @dataclass(frozen=True, slots=True)
@@ -55,6 +55,7 @@ class FileLines:
     options: tuple[OptionText, ...]
     holes: dict[int, Hole] = field(default_factory=dict)
     last_line: int = 0
+    remarks: tuple[Remark, ...] = ()
 
     @property
     def offsets(self) -> NDArray[np.int64]:
@@ -75,9 +76,10 @@ def read_lines(text: str, name: str) -> FileLines:
     comments: list[Comment] = []
     keywords: list[Keyword] = []
     options: list[OptionText] = []
+    remarks: list[Remark] = []
     informing = False
     number = 0
-    for number, line in enumerate(text.split("\n"), start=1):
+    for number, line in enumerate(text.rstrip(f"\n\t {_DOS_END}").split("\n"), start=1):
         if "!" in line:
             line, _, comment = line.partition("!")
             comments.append(Comment(number, comment.strip(), bool(line.strip())))
@@ -96,21 +98,35 @@ def read_lines(text: str, name: str) -> FileLines:
             comments.append(Comment(number, line.strip()))
         elif mark == "#":
             options.append(OptionText(number, line.strip()[1:], len(counts), len(keywords)))
+        elif not counts and _names_columns(line, words):
+            comments.append(Comment(number, line.strip()))
+            remarks.append(Remark(number, f"the line {line.strip()[:60]!r} was read as a comment"))
         else:
             numbers.append(number)
             counts.append(len(words))
             tokens += words
     if informing:
         raise refusal(name, number, "[Begin Information] has no [End Information]", "add it, or export again")
-    counted = np.asarray(counts, np.int64)
+    parted = part_words(tokens, counts, numbers, name)
+    counted = np.asarray(parted.counts, np.int64)
     places = Places(np.asarray(numbers, np.int64), np.cumsum(counted) - counted)
-    values, holes = _values(tokens, places, name)
-    return FileLines(values, counted, places, tuple(comments), tuple(keywords), tuple(options), holes, number)
+    values, holes = read_values(parted.words, places, name)
+    return FileLines(
+        values,
+        counted,
+        places,
+        tuple(comments),
+        tuple(keywords),
+        tuple(options),
+        holes,
+        number,
+        (*remarks, *parted.remarks),
+    )
 
 
-def refusal(name: str, line: int, what: str, remedy: str) -> FileError:
-    """Return the error that refuses a file for what stands in one of its lines."""
-    return FileError(f"not readable as a Touchstone file: {what}", where=f"{name}, line {line}", hint=remedy)
+def _names_columns(line: str, words: list[str]) -> bool:
+    """Whether a line above the numbers names columns, without the mark of a comment: freq magS11 angS11 ..."""
+    return _NAMES_COLUMNS.search(line) is not None and not any(is_number_or_none(word) for word in words)
 
 
 def _keyword(line: str, number: int, at: int, name: str) -> Keyword:
@@ -118,42 +134,3 @@ def _keyword(line: str, number: int, at: int, name: str) -> Keyword:
     if match is None:
         raise refusal(name, number, f"{line.strip()[:40]!r} is no keyword", "a keyword stands in [ and ]")
     return Keyword(number, " ".join(match[1].split()).casefold(), match[2], at)
-
-
-def _values(tokens: list[str], places: Places, name: str) -> tuple[Floats, dict[int, Hole]]:
-    """The numbers, NaN where a token says that there is none; the fast way is taken where all are plain."""
-    joined = " ".join(tokens)
-    if joined.isascii() and not joined.encode().translate(None, _PLAIN):
-        try:
-            values = np.fromiter(map(float, tokens), np.float64, len(tokens))
-        except ValueError:
-            return _one_by_one(tokens, places, name)
-        if not len(values) or bool((np.abs(values) < _OVERFLOW).all()):
-            return values, {}
-    return _one_by_one(tokens, places, name)
-
-
-def _one_by_one(tokens: list[str], places: Places, name: str) -> tuple[Floats, dict[int, Hole]]:
-    values = np.empty(len(tokens))
-    holes: dict[int, Hole] = {}
-    for offset, token in enumerate(tokens):
-        values[offset] = value = _number(token, offset, places, name)
-        if not abs(value) < _OVERFLOW:
-            values[offset] = np.nan
-            holes[offset] = Hole(*places.of(offset), token[:40])
-    return values, holes
-
-
-def _number(token: str, offset: int, places: Places, name: str) -> float:
-    if token.isascii() and not token.encode().translate(None, _PLAIN):
-        try:
-            return float(token)
-        except ValueError:
-            pass
-    if _NO_NUMBER.fullmatch(token):
-        return float("nan")
-    line, place = places.of(offset)
-    remedy = "numbers have a decimal point and no unit; comments begin with !"
-    if re.fullmatch(r"[+-]?\d*,\d+(?:[eE][+-]?\d+)?", token):
-        remedy = "it has a decimal comma: export the file with decimal points"
-    raise refusal(name, line, f"{token[:40]!r} (number {place} of the line) is no number", remedy)

@@ -7,6 +7,9 @@ from numpy.typing import NDArray
 
 from specflow.importers.readers.touchstone_network import Complexes, Floats, PairFormat
 
+#: Beyond it fewer than four digits of S are left of the sixteen of Z, Y, G or H (rule of thumb, no source).
+_MOST_CONDITION = 1e12
+
 
 def pair_order(ports: int, matrix_format: str, s21_first: bool) -> NDArray[np.int64]:
     """Return (p, p): which pair of a frequency is entry [i, j], counted from 0.
@@ -69,10 +72,19 @@ def scattering_of(matrix: Complexes, parameter: str, reference_ohm: Floats) -> C
     s = np.full(matrix.shape, np.nan + 0j)
     with np.errstate(all="ignore"):
         usable = np.isfinite(incident).all(axis=(1, 2)) & (np.abs(np.linalg.det(incident)) > 0)
+        usable[usable] = _condition(incident[usable]) < _MOST_CONDITION
     s[usable] = np.linalg.solve(
         incident[usable].transpose(0, 2, 1), reflected[usable].transpose(0, 2, 1)
     ).transpose(0, 2, 1)
     return s
+
+
+def _condition(matrix: Complexes) -> Floats:
+    """The condition number of each matrix, its rows and columns brought to one size first: that a port has kilohms
+    where another has ohms loses no digits, that two ports say nearly the same does."""
+    columns = matrix / np.abs(matrix).max(axis=1, keepdims=True)
+    condition: Floats = np.linalg.cond(columns / np.abs(columns).max(axis=2, keepdims=True))
+    return condition
 
 
 def _voltages_and_currents(matrix: Complexes, parameter: str) -> tuple[Complexes, Complexes]:

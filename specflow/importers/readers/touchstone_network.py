@@ -9,6 +9,7 @@ from enum import StrEnum
 import numpy as np
 from numpy.typing import NDArray
 
+from specflow.errors import FileError
 from specflow.importers.readers.source import FileFingerprint
 
 Floats = NDArray[np.float64]
@@ -28,7 +29,7 @@ class PairFormat(StrEnum):
         return {"DB": ("dB", "angle"), "MA": ("magnitude", "angle"), "RI": ("real", "imaginary")}[self.value]
 
 
-HERTZ = {"Hz": 1.0, "kHz": 1e3, "MHz": 1e6, "GHz": 1e9}
+HERTZ = {"Hz": 1.0, "kHz": 1e3, "MHz": 1e6, "GHz": 1e9, "THz": 1e12}
 
 
 def values_per_frequency(ports: int, matrix_format: str = "Full") -> int:
@@ -214,3 +215,8 @@ class NetworkFile:
         """Return how many lines below the first of its frequency an entry stands, None where that changes."""
         offsets = self.places.lines(self.starts + self.pair_places[i, j]) - self.lines
         return int(offsets[0]) if bool((offsets == offsets[0]).all()) else None
+
+
+def refusal(name: str, line: int, what: str, remedy: str) -> FileError:
+    """Return the error that refuses a file for what stands in one of its lines."""
+    return FileError(f"not readable as a Touchstone file: {what}", where=f"{name}, line {line}", hint=remedy)

@@ -4,13 +4,14 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from specflow.importers.readers.touchstone_lines import OptionText, refusal
-from specflow.importers.readers.touchstone_network import HERTZ, PairFormat
+from specflow.importers.readers.touchstone_lines import OptionText
+from specflow.importers.readers.touchstone_network import HERTZ, PairFormat, refusal
 
 #: Units that files with another x axis have in the place of a frequency's: the axis is then a doubt.
 OTHER_UNITS = {"dbm": "dBm", "dbw": "dBW", "v": "V", "degc": "°C"}
 _UNITS = {unit.casefold(): unit for unit in HERTZ} | OTHER_UNITS
 _FORMATS = {one.value.casefold(): one for one in PairFormat}
+_OHM = ("ohm", "ohms", "ω")  # both signs of ohm fold to the small letter
 _PARAMETERS = ("s", "y", "z", "g", "h")
 
 
@@ -61,7 +62,7 @@ def _take(said: dict[str, str], word: str, option: OptionText, name: str) -> Non
         if key in _PARAMETERS
         else ""
     )
-    known = "known are Hz kHz MHz GHz, S Y Z G H, DB MA RI and R with its ohms"
+    known = "known are Hz kHz MHz GHz THz, S Y Z G H, DB MA RI and R with its ohms"
     if not kind:
         raise refusal(name, option.line, f"{word!r} is no option of the option line", known)
     if kind in said and said[kind] != key:
@@ -83,4 +84,5 @@ def _reference(words: list[str], option: OptionText, name: str) -> tuple[tuple[f
         raise refusal(
             name, option.line, "R has no positive number of ohms after it", "write R 50, or leave R out"
         )
-    return tuple(ohms), words[len(ohms) :]
+    rest = words[len(ohms) :]
+    return tuple(ohms), rest[1:] if rest and rest[0].casefold() in _OHM else rest

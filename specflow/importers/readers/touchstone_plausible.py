@@ -106,7 +106,14 @@ def angle_doubts(network: NetworkFile) -> list[Doubt]:
 
 
 def number_remarks(network: NetworkFile) -> Iterator[Remark]:
-    """Say where the comments count other points or name other ends."""
+    """Say where a conversion gives no S, and where the comments count other points or name other ends."""
+    without = np.flatnonzero((np.isnan(network.s) & ~np.isnan(network.recorded)).any(axis=(1, 2)))
+    if len(without):
+        what = (
+            f"the {network.parameter} parameters of {len(without)} of {len(network.axis)} frequencies have no S: "
+            "ports say the same, or the sum with the reference is zero; those rows were left out"
+        )
+        yield Remark(int(network.lines[without[0]]), what, warns=True)
     for comment in outside_data(network.comments, network.lines):
         counted = _POINTS.search(comment.text)
         if counted and int(counted["count"]) != len(network.axis):

@@ -14,8 +14,13 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.errors import FileError
-from specflow.importers.readers.touchstone_lines import FileLines, refusal
-from specflow.importers.readers.touchstone_network import Floats, Remark, values_per_frequency
+from specflow.importers.readers.touchstone_lines import FileLines
+from specflow.importers.readers.touchstone_network import (
+    Floats,
+    Remark,
+    refusal,
+    values_per_frequency,
+)
 
 NOISE_VALUES = 5
 _MOST_PORTS = 512

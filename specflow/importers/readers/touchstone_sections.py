@@ -5,8 +5,8 @@ from __future__ import annotations
 import re
 from dataclasses import dataclass
 
-from specflow.importers.readers.touchstone_lines import FileLines, Keyword, refusal
-from specflow.importers.readers.touchstone_network import Remark
+from specflow.importers.readers.touchstone_lines import FileLines, Keyword
+from specflow.importers.readers.touchstone_network import Remark, refusal
 
 VERSIONS = ("2.0", "2.1")
 _KNOWN = (

@@ -296,7 +296,8 @@ def check_network(content: bytes, grids: list[Grid]) -> int:
     for number, line, token in grids[0].rows:
         fields = lines[int(str(line)) - 1].split("!")[0].split()
         written = fields[int(str(token)) - 1].replace("\0", "")
-        assert float(written) == number, f"line {line}, {token}: {number} in {lines[int(str(line)) - 1]!r}"
+        plain = re.sub("[dD]", "e", written)  # the exponent of FORTRAN
+        assert float(plain) == number, f"line {line}, {token}: {number} in {lines[int(str(line)) - 1]!r}"
         compared += 1
     return compared
 

@@ -304,7 +304,7 @@ FULL = "-0.3 0 0.6 0 0.6 0 -0.3 0"
         ("a.s1p", "# GHz S RI R 50\n1 1_0 0\n", 2, "'1_0'"),
         ("a.s1p", "# GHz S RI R 50\n1 ١ 0\n", 2, "is no number"),
         ("a.s1p", "# GHz S RI R 50\nnan 1 0\n", 2, "the frequency is no number"),
-        ("a.s1p", "# THz S RI R 50\n1 1 0\n", 1, "'THz' is no option"),
+        ("a.s1p", "# ns S RI R 50\n1 1 0\n", 1, "'ns' is no option"),
         ("a.s1p", "# GHz MHz S RI R 50\n1 1 0\n", 1, "GHZ and MHZ"),
         ("a.s1p", "# GHz S RI R\n1 1 0\n", 1, "no positive number of ohms"),
         ("a.s1p", "# GHz S RI R -50\n1 1 0\n", 1, "no positive number of ohms"),
@@ -570,3 +570,83 @@ def test_angles_that_look_like_radians_are_doubted(tmp_path: Path) -> None:
 )
 def test_comments_that_speak_of_another_x_axis_do(tmp_path: Path, head: str) -> None:
     assert DoubtKind.X_AXIS in [kind for kind, _ in doubts(tmp_path, f"{head}{TWO}1 {FULL}\n2 {FULL}\n")]
+
+
+# --- spellings beside the format that have one meaning
+
+
+@pytest.mark.parametrize(
+    "rows",
+    [
+        "1.5 1.25 -3.0\n2.5 -0.125 300.0\n",
+        "1.5D0 12.5D-1 -3.0d+00\n2.5D+00 -0.125 3.D2\n",
+        "1,5 1,25 -3,0\n2,5 -1,25E-1 300,0\n",
+        "1,5\t1,25\t-3\n2,5\t-0,125\t3E2\n",
+        "1.5,1.25,-3.0\n2.5, -0.125, 3e2,\n",
+        "1.5;1.25;-3.0\n2.5;-0.125;3e2\n",
+        "1,5;1,25;-3,0\n2,5;-0,125;300\n",
+        "1.5 1.25 -3.0\n2.5 -0.125 300\n\x1a\x1a\n",
+        "1.5 1.25 -3.0\r\n2.5 -0.125 300\x1a",
+        "freq reS11 imS11\n1.5 1.25 -3.0\n2.5 -0.125 300\n",
+    ],
+)
+def test_spellings_with_one_meaning_are_read_as_the_plain_one(tmp_path: Path, rows: str) -> None:
+    network = read_text(tmp_path, f"# GHz S RI R 50\n{rows}", "a.s1p")
+    assert network.axis.tolist() == [1.5, 2.5] and network.doubts == ()
+    assert network.s[:, 0, 0].tolist() == [1.25 - 3j, -0.125 + 300j]
+    assert network.place(1, 0, 0)[1] == 2
+    is_said = any(one in rows for one in (",", ";", "freq"))
+    assert bool(network.remarks) is is_said
+
+
+@pytest.mark.parametrize(
+    ("rows", "line", "words"),
+    [
+        ("1,500 1,250 3,125\n", 2, "a decimal comma, or one between thousands"),
+        ("1.5 1.25 0.5\n2.5 1,25 0.5\n", 3, "'1,25' (number 2 of the line)"),
+        ("1.5,,0.5\n2.5,1.25,0.5\n", 2, "number 2 of the line is missing"),
+        ("1.5;;0.5\n2.5;1.25;0.5\n", 2, "number 2 of the line is missing"),
+        ("1.5,1.25 0.5 0.5\n2.5,1.25,0.5\n", 2, "the row has 4 numbers"),
+        ("1.5D 1.25 0.5\n", 2, "'1.5D'"),
+        ("1.5 1.25 0.5\n2.5 1.25 0.5\nfreq reS11 imS11\n", 4, "'freq'"),
+        ("freq S11 12\n1.5 1.25 0.5\n", 2, "'freq'"),
+        ("measured by somebody\n1.5 1.25 0.5\n", 2, "'measured'"),
+        ("1.5 1.25 0.5\n\x1a\n2.5 1.25 0.5\n", 3, "no number"),
+    ],
+)
+def test_what_has_two_meanings_or_none_is_still_refused(
+    tmp_path: Path, rows: str, line: int, words: str
+) -> None:
+    with pytest.raises(FileError) as caught:
+        read_text(tmp_path, f"# GHz S RI R 50\n{rows}", "a.s1p")
+    assert caught.value.where == f"a.s1p, line {line}" and words in caught.value.message
+
+
+@pytest.mark.parametrize("word", ["-nan(ind)", "nan(0x8000)", "-nan", "1,#IND", "*****", "+inf", "1.#QNAN"])
+def test_every_mark_of_no_number_leaves_its_entry_out(tmp_path: Path, word: str) -> None:
+    network = read_text(tmp_path, f"# GHz S DB R 50\n1 -3 0\n2 {word} 0\n", "a.s1p")
+    assert [(one.line, one.token, one.text) for one in network.holes] == [(3, 2, word)]
+
+
+def test_a_line_of_column_names_that_is_no_comment_is_looked_at_as_one(tmp_path: Path) -> None:
+    names = "freq magS11 angS11 magS12 angS12 magS21 angS21 magS22 angS22"
+    network = read_text(tmp_path, f"# GHz S MA R 50\n{names}\n1 0.1 0 0.2 0 0.3 0 0.4 0\n", "a.s2p")
+    assert [one.kind.value for one in network.doubts] == ["column order"]
+
+
+@pytest.mark.parametrize("option", ["# GHz S RI R 75 Ohm", "# R 75 Ω GHz S RI", "# THz S RI R 75 ohms"])
+def test_words_of_an_option_line_that_other_programs_write(tmp_path: Path, option: str) -> None:
+    network = read_text(tmp_path, f"{option}\n1 1 0\n", "a.s1p")
+    assert network.reference_ohm.tolist() == [75.0]
+    assert network.frequency_hz.tolist() == [1e12 if "THz" in option else 1e9]
+
+
+@pytest.mark.parametrize("matrix", ["-1 0", "1e14 0 1e14 0 1e14 0 1e14 0"], ids=["minus R", "twice"])
+def test_impedances_that_have_no_s_are_left_out_and_said(tmp_path: Path, matrix: str) -> None:
+    """Z + R is not invertible, or loses all digits (two ports with the same row); no S is made up."""
+    ports = 1 if len(matrix.split()) == 2 else 2
+    plain = " ".join(["3 0", "0 0", "0 0", "3 0"][: ports * ports])
+    network = read_text(tmp_path, f"# GHz Z RI R 1\n1 {matrix}\n2 {plain}\n", f"a.s{ports}p")
+    assert np.isnan(network.s[0]).any() and network.s[1, 0, 0] == pytest.approx(0.5)
+    [said] = [one for one in network.remarks if one.warns]
+    assert (said.line, "1 of 2 frequencies have no S" in said.what) == (2, True)
