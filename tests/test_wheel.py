@@ -78,7 +78,7 @@ def run(*command: str, cwd: Path | None = None) -> str:
 def test_a_clean_installation_creates_opens_and_upgrades_a_project(python: Path, tmp_path: Path) -> None:
     printed = run(str(python), "-I", "-c", USE, cwd=tmp_path)
     assert "upgraded from schema" in printed
-    assert len(list(tmp_path.glob("made-schema*.specflow"))) == 1
+    assert len(list(tmp_path.glob("made.specflow-schema*"))) == 1
 
 
 def test_a_clean_installation_builds_the_demo_from_its_own_examples(python: Path, tmp_path: Path) -> None:

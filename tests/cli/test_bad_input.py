@@ -61,10 +61,10 @@ FILES: dict[str, tuple[Callable[[Path], Path], tuple[str, ...], str]] = {
     ),
     "old": (
         lambda folder: bytes_of(folder / "a.xlsx", OLD + "Workbook".encode("utf-16-le")),
-        ("old binary format", "save"),
+        ("damaged", "save it as .xlsx"),
         "a.xlsx",
     ),
-    "no workbook": (lambda folder: bytes_of(folder / "a.xlsx", b"\0\1\2"), ("not a workbook", "save"), "a.xlsx"),
+    "no workbook": (lambda folder: bytes_of(folder / "a.xlsx", b"\0\1\2"), ("no workbook", "save"), "a.xlsx"),
     "of another kind": (lambda folder: bytes_of(folder / "a.pdf", b"%PDF-1.7"), (".pdf", ".xlsx"), "a.pdf"),
     "without a cell": (lambda folder: book(folder / "a.xlsx", []), ("no cell", "check"), "a.xlsx"),
     "a zip bomb": (

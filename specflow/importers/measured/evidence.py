@@ -103,7 +103,7 @@ def read_table(located: LocatedTable, context: Context, person: Mapping[str, str
         values=0 if columns is None else _count(columns),
         recognised=(*stated.readings, *(meaning.reading() for meaning in work.meanings)),
         questions=tuple(dict.fromkeys(work.questions)),
-        rejected=work.rejects.left_out(),
+        rejected=work.rejects.rejected(),
         rejected_cells=len(work.rejects.cells),
         blank=dict(work.rejects.blank),
         notes=(*work.notes, *(f"not used: {one}" for one in stated.unused)),

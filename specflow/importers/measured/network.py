@@ -181,7 +181,7 @@ class _Reading:
             values=sum(int(np.count_nonzero(~np.isnan(one.low))) for one in columns.arrays.values()),
             recognised=self._recognised(columns, axis, block, block_from),
             questions=tuple(dict.fromkeys(work.questions)),
-            rejected=work.rejects.left_out(),
+            rejected=work.rejects.rejected(),
             rejected_cells=len(work.rejects.cells),
             notes=self._notes(work, columns),
             mapping=write_mapping(replace(self.mapping, layout=self.key)) if self.mapping_from else "",

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections import Counter
+from collections.abc import Sequence
 from dataclasses import dataclass, field
 from datetime import date, datetime, time, timedelta
 
@@ -28,12 +29,14 @@ class Rejects:
     """What one table has rejected, and blank cells by their reason.
 
     ``turned``: rows and columns of the table have changed places. ``keep_placeholders`` says that -999 and the like are
-    readings of this table.
+    readings of this table. ``sums`` are rows worked out from the others: the table records that they were left out, and
+    they do not stand in the way of taking it.
     """
 
     sheet: str
     turned: bool = False
     cells: list[Rejected] = field(default_factory=list)
+    sums: list[Rejected] = field(default_factory=list)
     blank: Counter[str] = field(default_factory=Counter)
     keep_placeholders: bool = False
 
@@ -45,15 +48,22 @@ class Rejects:
         """Reject one cell."""
         self.cells.append(Rejected(row, column, cell_text(value), reason))
 
-    def left_out(self) -> tuple[LeftOut, ...]:
+    def rejected(self) -> tuple[LeftOut, ...]:
         """The rejected cells; of many with one reason below each other the first stands for the run."""
-        if len(self.cells) <= _MOST_SINGLY:
+        return self._entries(self.cells)
+
+    def left_out(self) -> tuple[LeftOut, ...]:
+        """All that the table does not hold: the rejected cells, and the rows that sum up the others."""
+        return self._entries([*self.cells, *self.sums])
+
+    def _entries(self, cells: Sequence[Rejected]) -> tuple[LeftOut, ...]:
+        if len(cells) <= _MOST_SINGLY:
             return tuple(
-                self._entry(one, one) for one in sorted(self.cells, key=lambda one: (one.row, one.column))
+                self._entry(one, one) for one in sorted(cells, key=lambda one: (one.row, one.column))
             )
         entries = []
         run: list[Rejected] = []
-        for one in sorted(self.cells, key=lambda one: (one.column, one.row)):
+        for one in sorted(cells, key=lambda one: (one.column, one.row)):
             if run and not _continues(run[-1], one):
                 entries.append(self._entry(run[0], run[-1]))
                 run = []

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Collection, Sequence
+from collections.abc import Collection, Iterator, Sequence
 
 import numpy as np
 
@@ -62,6 +62,7 @@ _SUMS_UP = frozenset(
     ("mean", "average", "avg", "max", "maximum", "min", "minimum", "median", "std", "stdev", "sd", "sigma", "total",
      "totals", "sum", "subtotal", "count", "spread", "range", "mittelwert", "summe")
 )  # fmt: skip
+_SUM = "a summary of the others, no reading (keep_summary_rows = true in a mapping reads it)"
 _SUMMARY_PHRASES = (
     "std dev",
     "standard deviation",
@@ -87,7 +88,7 @@ def select_rows(
         reason = (
             "the row is hidden (filtered or collapsed): show it, or include_hidden_rows = true in a mapping"
         )
-        _reject(table, rows[hidden], reason, rejects)
+        rejects.cells += _left_out(table, rows[hidden], reason)
         rows = rows[~hidden]
     if not mapping.keep_summary_rows:
         summary = _summary_rows(table, meanings, rows)
@@ -99,10 +100,11 @@ def select_rows(
             if certain:
                 notes.append(_summary_note(table, certain))
             marked = np.isin(rows, certain)
+            rejects.sums += _left_out(table, rows[marked], _SUM)
             rows = rows[~marked]
             marked = np.isin(rows, summary)
             reason = "a summary, limit or note, no reading (keep_summary_rows = true in a mapping reads it)"
-            _reject(table, rows[marked], reason, rejects)
+            rejects.cells += _left_out(table, rows[marked], reason)
             rows = rows[~marked]
     return rows, notes
 
@@ -132,11 +134,11 @@ def _summary_note(table: FoundTable, rows: Sequence[int]) -> str:
     )
 
 
-def _reject(table: FoundTable, rows: Rows, reason: str, rejects: Rejects) -> None:
+def _left_out(table: FoundTable, rows: Rows, reason: str) -> Iterator[Rejected]:
     first = table.headers[0].column
     for row in rows.tolist():
         text = " | ".join(cell_text(value) for value in table.grid.row(row) if not is_blank(value))
-        rejects.cells.append(Rejected(row, first, text, reason, whole_row=True))
+        yield Rejected(row, first, text, reason, whole_row=True)
 
 
 def _summary_rows(table: FoundTable, meanings: Sequence[ColumnMeaning], rows: Rows) -> list[int]:

@@ -9,6 +9,7 @@ one module and one line in ``READERS``.
 
 from __future__ import annotations
 
+import re
 from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass, replace
 from pathlib import Path
@@ -75,6 +76,7 @@ READERS = (
 )
 
 
+_CONTROL = re.compile(rb"[\x00-\x08\x0e-\x19\x1b-\x1f\x7f]")
 REMEDIES = {
     ".xlsb": "save it as .xlsx",
     ".fods": "save it as .ods",
@@ -124,11 +126,15 @@ def open_grids(path: str | Path, expected: FileFingerprint | None = None) -> Gri
     content = content_of(source)
     if content is named.content:
         return GridFile(source.fingerprint, tuple(named.read(source)))
+    if content is Content.TEXT and not _is_text(source):
+        raise FileError(
+            f"this is no {named.title}, and no text either",
+            where=path.name,
+            hint="export it again, or save it as .xlsx",
+        )
     true = next(reader for reader in reversed(READERS) if reader.content is content)
     grids = true.read(source)
-    if content is Content.TEXT and (
-        grids[0].last_column < 2 or len(grids[0].rows) < 2 or not _is_clean(source)
-    ):
+    if content is Content.TEXT and (grids[0].last_column < 2 or len(grids[0].rows) < 2):
         raise FileError(
             f"this is {content} without a table, and not what its ending says",
             where=path.name,
@@ -148,9 +154,7 @@ def _unknown(path: Path) -> FileError:
     )
 
 
-def _is_clean(source: Source) -> bool:
-    """Text without a doubt: nothing had to be guessed to decode it."""
-    try:
-        return "\0" not in source.content.decode()
-    except UnicodeDecodeError:
-        return source.content.startswith((b"\xff\xfe", b"\xfe\xff"))
+def _is_text(source: Source) -> bool:
+    """Text in UTF-16 that says so, or bytes among which no control character stands but those of lines and tabs."""
+    marked = source.content.startswith((b"\xff\xfe", b"\xfe\xff"))
+    return marked or not _CONTROL.search(source.content)

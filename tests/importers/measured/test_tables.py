@@ -131,6 +131,9 @@ def test_rows_that_sum_up_are_left_out_and_a_mode_called_max_is_not(tmp_path: Pa
     table = taken(one_table(book(tmp_path / "b.xlsx", rows)))
     assert low(table, "Gain") == [20, 19] and set(rejected(table)) == {"A5"}
     assert any("left out as sums of the others (Mean): row 4" in note for note in table.notes)
+    assert table.document is not None
+    left_out = {one.cell: one.reason for one in table.document.left_out}
+    assert set(left_out) == {"A4", "A5"} and left_out["A4"].startswith("a summary of the others")
 
 
 def test_a_mode_of_a_table_without_other_conditions_is_rejected_and_not_passed_over(tmp_path: Path) -> None:

@@ -14,6 +14,7 @@ import openpyxl
 import pytest
 from python_calamine import CalamineWorkbook
 
+from specflow.errors import FileError
 from specflow.importers.readers import Grid, OddKind, open_grids
 from tests.importers.readers.workbooks import refused
 
@@ -290,7 +291,7 @@ def test_a_file_whose_ending_lies_is_read_as_what_it_is(
 
 @pytest.mark.parametrize(
     "content",
-    [b"Just a line\n", b"caf\xe9,1\n2,3\n", b"Report of Monday\nall was well\n", b"\x00\x01\x02\x03" * 40],
+    [b"Just a line\n", b"caf\xe9,1\n2\0,3\n", b"Report of Monday\nall was well\n", b"\x00\x01\x02\x03" * 40],
 )
 def test_text_that_is_no_table_is_not_read_for_a_workbook(tmp_path: Path, content: bytes) -> None:
     (tmp_path / "a.xlsx").write_bytes(content)
@@ -356,3 +357,15 @@ def test_published_workbooks_converted_by_an_office_program(tmp_path: Path, kind
                     compared += 1
             assert sorted(map(str, grid.merged)) == sorted(map(str, sheet.merged_cells.ranges))
     assert compared > 200
+
+
+def test_text_of_an_old_code_page_saved_as_a_workbook_is_read_and_bytes_that_are_no_text_are_not(
+    tmp_path: Path,
+) -> None:
+    path = tmp_path / "export.xls"
+    path.write_bytes("T (°C)\tGain (dB)\n-30\t20.1\n25\t20.3\n".encode("latin-1"))
+    (grid,) = open_grids(path)
+    assert grid.value(1, 1) == "T (°C)" and grid.value(3, 2) == "20.3"
+    path.write_bytes(b"T\tGain\n\0\1\2\x99\t1\n")
+    with pytest.raises(FileError, match="no old binary workbook, and no text either"):
+        open_grids(path)
