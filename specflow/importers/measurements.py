@@ -17,6 +17,7 @@ from specflow.importers.measured.located import GivenMappings, LocatedTable, Map
 from specflow.importers.measured.mapping import read_mappings, write_mapping
 from specflow.importers.measured.mapping_parts import LayoutMapping
 from specflow.importers.measured.network import read_network_tables
+from specflow.importers.measured.network_doubts import OPTION_LINE
 from specflow.importers.measured.proposal import Proposal, propose
 from specflow.importers.measured.repeats import without_repeats
 from specflow.importers.measured.result import (
@@ -147,7 +148,8 @@ def _of_network(
     """A Touchstone file: it has no cells to be understood, but entries, comments and doubts."""
     if sheets:
         raise FileError("a network file has no sheets", where=Path(path).name, hint="leave --sheet out")
-    network = read_network(read_source(Path(path)))
+    option = next((text for key, text in person.items() if key.strip().casefold() == OPTION_LINE), "")
+    network = read_network(read_source(Path(path)), option)
     read = read_network_tables(network, context, given, person, IMPORTER_VERSION)
     file = _file(network.fingerprint, read.tables, person)
     unused = [_unused(network.fingerprint.name, layout, given.name) for layout in read.unused_layouts]

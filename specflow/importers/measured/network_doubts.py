@@ -14,8 +14,11 @@ from specflow.importers.readers.touchstone_matrix import complex_of
 from specflow.importers.readers.touchstone_network import HERTZ, Doubt, DoubtKind, NetworkFile, PairFormat
 from specflow.units import compatible, format_unit, parse_unit
 
+#: What is said of a file without an option line, before it can be read at all.
+OPTION_LINE = "option line"
+
 #: What may be said of a network, beside what may be said of any table and "port N".
-NETWORK_KEYS = ("x axis", "column order", "format", "angles", "derive", "spacing")
+NETWORK_KEYS = (OPTION_LINE, "x axis", "column order", "format", "angles", "derive", "spacing")
 
 _REMEDIES = {
     DoubtKind.X_AXIS: '--state "x axis=frequency" (or "frequency in GHz") if it is one, else its condition: '

@@ -54,6 +54,7 @@ from specflow.importers.readers.touchstone_shape import Shape
 DEFAULT_OHM = 50.0
 
 _HEAD_BYTES = 16384
+_STATE_OPTION = 'say what holds for the numbers above it, as in --state "option line=# GHz S MA R 50"'
 _WHOLE_OPTION = re.compile(
     r"#\s*(?=.*\b[kMGT]?Hz\b)(?=.*\b[SYZGH]\b)(?=.*\b(?:DB|MA|RI)\b)[\w\s.+-]*(?:!.*)?$", re.IGNORECASE
 )
@@ -88,11 +89,14 @@ def ports_by_ending(name: str) -> int | None:
     return int(match["ports"]) if match else None
 
 
-def read_network(source: Source) -> NetworkFile:
-    """Read a Touchstone file. FileError with line, cause and remedy for what cannot be read rightly."""
+def read_network(source: Source, stated_option: str = "") -> NetworkFile:
+    """Read a Touchstone file. FileError with line, cause and remedy for what cannot be read rightly.
+
+    ``stated_option`` is the option line of a file that has none above its numbers.
+    """
     text, notes = decode(source)
     name = source.name
-    lines = read_lines(text, name)
+    lines = _with_stated_option(read_lines(text, name), stated_option, name)
     option = _option(lines, name)
     remarks = [*lines.remarks, *_option_remarks(lines, option)]
     sections = read_sections(lines, name) if lines.keywords else None
@@ -108,14 +112,28 @@ def read_network(source: Source) -> NetworkFile:
     )
 
 
+def _with_stated_option(lines: FileLines, text: str, name: str) -> FileLines:
+    """The lines with an option line that a person states, where the file has none above its numbers."""
+    if not text:
+        return lines
+    own = next((one for one in lines.options if not one.at or lines.keywords), None)
+    if own is not None:
+        what = f"the file has an option line of its own (#{own.text[:40]}), and another one is stated"
+        raise refusal(name, own.line, what, "leave the statement out, or mend the line in the file")
+    line = int(lines.numbers[0]) if len(lines.numbers) else 1
+    said = OptionText(line, text.strip().removeprefix("#"), 0, 0)
+    remark = Remark(line, f"the option line #{said.text} is that stated by the person")
+    return replace(lines, options=(said, *lines.options), remarks=(*lines.remarks, remark))
+
+
 def _option(lines: FileLines, name: str) -> Option:
     if not lines.options:
         line = int(lines.numbers[0]) if len(lines.numbers) else 1
         what = "there is no option line, which says unit and format of the numbers"
-        raise refusal(name, line, what, "write it above the numbers: # GHz S MA R 50")
+        raise refusal(name, line, what, 'say it, as in --state "option line=# GHz S MA R 50"')
     first = lines.options[0]
     if first.at and not lines.keywords:
-        raise refusal(name, first.line, "numbers stand above the option line", "put the option line first")
+        raise refusal(name, first.line, "numbers stand above the option line", _STATE_OPTION)
     return read_option(first, name)
 
 

@@ -498,3 +498,31 @@ def test_angles_that_fill_the_range_of_radians_are_asked_and_kept_in_degrees(tmp
     assert kept is not None and converted is not None
     assert kept.values["S11 angle"].low.tolist() == angles.tolist()
     assert converted.values["S11 angle"].low.tolist() == np.rad2deg(angles).tolist()
+
+
+def test_an_option_line_that_is_missing_is_stated(tmp_path: Path) -> None:
+    path = tmp_path / "a.s2p"
+    path.write_text(f"! no option line\n{ROWS}")
+    with pytest.raises(FileError, match="no option line") as caught:
+        raw(path)
+    assert caught.value.hint == 'say it, as in --state "option line=# GHz S MA R 50"'
+    table = raw(path, **{"Option line": "# MHz S RI R 75"})
+    assert table.document is not None and table.columns is not None
+    assert table.document.values[0].name == "S11 real"
+    assert table.columns.conditions.units["frequency"] == "MHz" and table.title.endswith("at 75 ohm")
+    assert any("is that stated by the person" in note for note in table.notes)
+    with pytest.raises(FileError, match="'furlong' is no option"):
+        raw(path, **{"option line": "# furlong S RI R 75"})
+
+
+def test_an_option_line_is_stated_for_numbers_above_the_one_of_the_file_only(
+    tmp_path: Path, amplifier: Path
+) -> None:
+    late = tmp_path / "late.s2p"
+    late.write_text(f"{ROWS}# MHz S DB R 50\n")
+    with pytest.raises(FileError, match="numbers stand above"):
+        raw(late)
+    table = raw(late, **{"option line": "# GHz S MA R 50"})
+    assert any("another option line (# MHz S DB R 50) was ignored" in note for note in table.notes)
+    with pytest.raises(FileError, match="an option line of its own"):
+        raw(amplifier, **{"option line": "# GHz S DB R 50"})
