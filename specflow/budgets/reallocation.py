@@ -131,14 +131,19 @@ def _misses(
 def _widened(probe: Probe, line: KnownLine, own: Ends) -> Ends:
     """Return bounds that take in what is known, rounded outwards: one number for all places where they are one now."""
     read = line.read
-    if any(bool(np.ptp(side[np.isfinite(side)]) > 0) for side in own if np.isfinite(side).any()):
-        low = np.where(line.is_known, np.minimum(own[0], line.value), own[0])
-        high = np.where(line.is_known, np.maximum(own[1], line.value), own[1])
-    else:
+    if _is_one(own):
         known = line.value[line.is_known]
         low = np.full(probe.size, min(float(own[0].min()), float(known.min())))
         high = np.full(probe.size, max(float(own[1].max()), float(known.max())))
+    else:
+        low = np.where(line.is_known, np.minimum(own[0], line.value), own[0])
+        high = np.where(line.is_known, np.maximum(own[1], line.value), own[1])
     return rounded_widely(_allotment(read, low, high, "")).ends(probe.size)
+
+
+def _is_one(own: Ends) -> bool:
+    """Whether each side is one number at all places."""
+    return all(bool((side == side[0]).all()) for side in own)
 
 
 def _allotment(read: ReadLine, low: Floats, high: Floats, words: str) -> Allotment:
@@ -183,7 +188,10 @@ def _slack(
     misses: Sequence[Miss],
     confidence: float,
 ) -> tuple[tuple[Slack, ...], list[Ends | None]]:
-    """Return the slack of every line, and the bounds it could be held to: what is known with its spread."""
+    """Return the slack of every line, and the bounds it could be held to: what is known with its spread.
+
+    One number for all places must take in what is known at each of them, or the block would miss what is proposed.
+    """
     missing = {one.line for one in misses}
     found: list[Slack] = []
     reach: list[Ends | None] = []
@@ -192,7 +200,10 @@ def _slack(
         is_known = line.is_known.all() and int(line.rank.min()) >= int(Rank.DATASHEET)
         if own is not None and is_known and line_name(line.read) not in missing:
             wide = one_sided_quantile(confidence, line.freedom) * np.hypot(line.spread, line.common)
-            best = np.maximum(own[0], line.value - wide), np.minimum(own[1], line.value + wide)
+            low, high = line.value - wide, line.value + wide
+            if _is_one(own):
+                low, high = np.full(probe.size, low.min()), np.full(probe.size, high.max())
+            best = np.maximum(own[0], low), np.minimum(own[1], high)
             found += _slack_of(line, own, best)
         reach.append(best)
     return tuple(found), reach
@@ -252,11 +263,10 @@ def _proposal(
     for read, was, now in zip(probe.chain.lines, before, after, strict=True):
         if was is None or now is None:
             continue
-        is_one = all(bool((side == side[0]).all()) for side in was)
         low, high = now
         wider = bool((now[0] < was[0] - _SMALL).any() or (now[1] > was[1] + _SMALL).any())
         narrower = bool((now[0] > was[0] + _SMALL).any() or (now[1] < was[1] - _SMALL).any())
-        if is_one:
+        if _is_one(was):
             ends = (low.min(), high.max()) if wider else (low.max(), high.min())
             low, high = (np.full(probe.size, end) for end in ends)
         if not wider and not narrower:

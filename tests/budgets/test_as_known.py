@@ -220,6 +220,26 @@ def test_slack_elsewhere_covers_a_miss_as_a_proposal_that_closes() -> None:
     assert "covers it" in found.sentence
 
 
+def test_one_number_for_all_conditions_is_not_tightened_beyond_what_is_known_at_any() -> None:
+    chain = a_chain(
+        {"block": "A", "gain": 18.0, "noise_figure": 1.2},
+        {"block": "B", "noise_figure": 7.0, "gain": 0.0},
+        conditions="CS",
+    )
+    points = a_conditions_set("CS", a_dimension(values=(18.0, 19.0)))
+    snapshot = project_of(chain, points, limit=at_most(2.0))
+    evidence = [
+        knowledge(1, "noise_figure", [1.7, 1.7], places=[0, 1], items=["SN1"] * 2),
+        knowledge(2, "noise_figure", [4.0, 7.0], places=[0, 1], items=["SN1"] * 2),
+    ]
+    state = as_known(chain, snapshot, DICTIONARY, evidence)
+    found = reallocate(Probe.of(chain, snapshot, DICTIONARY), state.lines, children(1.5))
+    assert found.slack[0].amount == pytest.approx(1.0)
+    limits = {(one.block, one.parameter): one.high for one in found.proposal}
+    assert 7.0 <= limits[("B", "noise_figure")] < 8.0
+    assert found.closure.closes is True
+
+
 def test_slack_that_is_not_enough_is_said() -> None:
     found = proposal(1.5, knowledge(1, "noise_figure", [2.1]), knowledge(2, "noise_figure", [7.9]), limit=2.0)
     assert math.isnan(found.part)
