@@ -42,7 +42,7 @@ def derived_of(
     if len(units) > 1:
         raise DocumentError(f"the groups give different units: {', '.join(sorted(units))}")
     governing = np.concatenate([taken[outcome.rows] for taken, outcome in found.outcomes])
-    covers = _covers(request.law, over, found, outcomes)
+    covers = _covers(request.law, rows, over, found, outcomes)
     rules = {one.u_rule for one in outcomes if one.u is not None and not np.isnan(one.u).all()}
     return Derived(
         _columns(request, rows, apart, found, governing),
@@ -57,16 +57,22 @@ def derived_of(
 
 
 def _covers(
-    law: Law, over: SaidRange | None, found: Gathered, outcomes: Sequence[Outcome]
+    law: Law, rows: Joined, over: SaidRange | None, found: Gathered, outcomes: Sequence[Outcome]
 ) -> tuple[Covered, ...]:
+    """Return the range that every group reached: an end missed within the tolerance that was said is not spoken for.
+
+    Whether such an end is near enough is for the requirement to say, by its own tolerance.
+    """
     if over is None or any(over.dimension in outcome.axes for outcome in outcomes):
         return ()
     span: Range = over.range
+    along = rows.numbers(over.dimension, over.unit)
+    ends = [(along[taken].min(), along[taken].max()) for taken, _ in found.outcomes]
     return (
         Covered(
             dimension=over.dimension,
-            low=span.low,
-            high=span.high,
+            low=max(span.low, *(float(first) for first, _ in ends)),
+            high=min(span.high, *(float(last) for _, last in ends)),
             largest_gap=found.largest_gap,
             unit=over.unit,
             in_parts=law.in_parts,

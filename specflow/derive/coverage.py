@@ -95,5 +95,6 @@ def _check_ends(along: Floats, inside: Floats, wanted: Range, reach: Floats, nam
     end = "neither end is" if not starts and not ends else f"the {'upper' if starts else 'lower'} end is not"
     raise CalculationError(
         f"{end} reached: there is {there}, needed is {needed}",
-        hint="measure the whole range, state a setting tolerance (± 10 MHz), or ask for the range that is there",
+        hint="measure the whole range, ask for the range that is there, or state the setting tolerance that the "
+        "requirement has (±), if the end was set within it",
     )

@@ -25,7 +25,7 @@ class InputColumn(Document):
 
 
 class Covered(Document):
-    """The range of a condition that derived values speak for: the raw data reached both ends.
+    """The range of a condition that derived values speak for: the raw data of every group of rows reached both ends.
 
     ``largest_gap`` is the largest between neighbouring raw values, in any group of rows. All in ``unit``. ``in_parts``:
     values over parts of a range speak for the whole together (the worst does; ripples over halves are none of it).

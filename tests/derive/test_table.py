@@ -42,6 +42,13 @@ def test_a_result_points_to_the_raw_row_and_says_where_on_the_axis() -> None:
     assert [found.columns.extra[AT_COLUMN].word(row) for row in range(4)] == ["20.2 GHz"] * 4
 
 
+def test_an_end_missed_within_the_tolerance_that_was_said_is_not_spoken_for() -> None:
+    wide = derived_of("ripple", swept(), over="frequency 17.2..21.0 GHz ± 1 GHz", gives="gain_flatness")
+    assert [(one.low, one.high) for one in wide.covers] == [(17.7, 20.2)]
+    narrow = derived_of("ripple", swept(), over="frequency 18..20 GHz ± 0.3 GHz", gives="gain_flatness")
+    assert [(one.low, one.high) for one in narrow.covers] == [(18.0, 20.0)]
+
+
 def test_a_group_does_not_care_for_the_order_of_its_rows() -> None:
     document, columns = swept()
     order = np.random.default_rng(1).permutation(document.rows)

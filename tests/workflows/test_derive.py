@@ -51,9 +51,11 @@ BAND = a_dimension("frequency", "GHz", span=Span(low=17.7, high=20.2, step=0.25)
 WARM = a_dimension("temperature_ambient", "°C", values=(25.0, 85.0), tolerance=2)
 
 
-def gain_trace(id: str = "T-1", off: float = 0.0, ripple: float = 0.5, step: int = 1) -> Any:
+def gain_trace(
+    id: str = "T-1", off: float = 0.0, ripple: float = 0.5, step: int = 1, until: float = 20.2
+) -> Any:
     """Gain from 17.7 to 20.2 GHz at two temperatures."""
-    place = FREQUENCY[::step]
+    place = FREQUENCY[until >= FREQUENCY][::step]
     gain = 22 + ripple * np.sin(3 * place) - off
     return a_trace(
         id,
@@ -137,6 +139,12 @@ def test_a_ripple_over_the_range_proves_the_range(store: ProjectStore) -> None:
     derived(store, "ripple", requirement="R-1")
     found = status(store, "R-1")
     assert (found.k, found.n, found.verdict) == (2, 2, Verdict.PASS)
+
+
+def test_a_generous_tolerance_of_the_law_proves_no_end_that_was_not_measured(store: ProjectStore) -> None:
+    supersede(store, gain_trace("T-2", until=19.9))
+    derived(store, "ripple", "T-2", requirement="R-1", over="frequency 17.7..20.2 GHz ± 0.5 GHz step 0.1 GHz")
+    assert status(store, "R-1").k == 0
 
 
 @pytest.mark.parametrize(
