@@ -229,7 +229,7 @@ def test_one_number_for_all_conditions_is_not_tightened_beyond_what_is_known_at_
     points = a_conditions_set("CS", a_dimension(values=(18.0, 19.0)))
     snapshot = project_of(chain, points, limit=at_most(2.0))
     evidence = [
-        knowledge(1, "noise_figure", [1.7, 1.7], places=[0, 1], items=["SN1"] * 2),
+        knowledge(1, "noise_figure", [1.75, 1.75], places=[0, 1], items=["SN1"] * 2),
         knowledge(2, "noise_figure", [4.0, 7.0], places=[0, 1], items=["SN1"] * 2),
     ]
     state = as_known(chain, snapshot, DICTIONARY, evidence)
