@@ -69,11 +69,11 @@ _UNSURE = (
 )
 
 
-def parse_reading(text: str, *, decimal_comma: bool | None = None) -> Reading | Blank:
+def parse_reading(text: str, *, decimal_comma: bool | None = None, grouped: bool = True) -> Reading | Blank:
     """Read the text of one cell: "−3,2", "1 234.5", "<-90", "> 60", "-90 … -80", "N/A", "OL", "—".
 
-    ``decimal_comma`` is what the sheet is known to use. Raises UnitError where the text is no reading, or where it has
-    two and the sheet does not say which ("1,234").
+    ``decimal_comma`` and ``grouped`` are what the sheet is known to use (``parse_number``). Raises UnitError where the
+    text is no reading, or where it has two and the sheet does not say which ("1,234").
     """
     plain = repaired(text)
     reason = _REASONS.get(plain.lower())
@@ -81,40 +81,40 @@ def parse_reading(text: str, *, decimal_comma: bool | None = None) -> Reading | 
         return Blank(reason, text)
     bound = _BOUND.match(plain)
     if bound:
-        limit = parse_number(bound["number"], decimal_comma=decimal_comma)
+        limit = parse_number(bound["number"], decimal_comma=decimal_comma, grouped=grouped)
         below = "<" in bound["sign"] or bound["sign"] in "≤⩽"
         return Reading(-math.inf, limit, text) if below else Reading(limit, math.inf, text)
     between = _RANGE.match(plain)
     if between:
-        return _between(between["lo"], between["hi"], text, decimal_comma)
-    return _point(plain, text, decimal_comma)
+        return _between(between["lo"], between["hi"], text, decimal_comma, grouped)
+    return _point(plain, text, decimal_comma, grouped)
 
 
 def parse_reading_with_unit(
-    text: str, *, decimal_comma: bool | None = None
+    text: str, *, decimal_comma: bool | None = None, grouped: bool = True
 ) -> tuple[Reading | Blank, Unit | None]:
     """Read a cell that may carry its unit: "<-90 dBm", "> 60dB", "3.2"; the unit is None where none is written."""
     plain = repaired(text)
     found = _WITH_UNIT.match(plain)
     if plain.lower() in _REASONS or found is None:
-        return parse_reading(text, decimal_comma=decimal_comma), None
-    reading = parse_reading(found["number"], decimal_comma=decimal_comma)
+        return parse_reading(text, decimal_comma=decimal_comma, grouped=grouped), None
+    reading = parse_reading(found["number"], decimal_comma=decimal_comma, grouped=grouped)
     unit = parse_unit(found["unit"])
     return Reading(reading.lo, reading.hi, text) if isinstance(reading, Reading) else reading, unit
 
 
-def _between(lo: str, hi: str, text: str, decimal_comma: bool | None) -> Reading:
-    ends = [parse_number(end, decimal_comma=decimal_comma) for end in (lo, hi)]
+def _between(lo: str, hi: str, text: str, decimal_comma: bool | None, grouped: bool) -> Reading:
+    ends = [parse_number(end, decimal_comma=decimal_comma, grouped=grouped) for end in (lo, hi)]
     if ends[0] > ends[1]:
         raise UnitError(f"'{text}' starts above its end", hint="write the smaller value first")
     return Reading(ends[0], ends[1], text)
 
 
-def _point(plain: str, text: str, decimal_comma: bool | None) -> Reading | Blank:
+def _point(plain: str, text: str, decimal_comma: bool | None, grouped: bool) -> Reading | Blank:
     for mark, hint in _UNSURE:
         if mark in plain:
             raise UnitError(f"'{text}' is not one number", hint=hint)
-    value = parse_number(plain, decimal_comma=decimal_comma)
+    value = parse_number(plain, decimal_comma=decimal_comma, grouped=grouped)
     if abs(value) >= _SCPI_NOT_A_NUMBER:
         return Blank("not a number, as SCPI instruments write it", text)
     return Reading(value, value, text)

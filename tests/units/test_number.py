@@ -103,3 +103,13 @@ def test_grouping_and_decimal_comma_do_not_change_the_value(whole: int, cents: i
     assert parse_number(english) == value
     assert parse_number(continental) == value
     assert parse_number(english.replace(",", "\u202f")) == value
+
+
+def test_one_group_behind_the_other_mark_is_either_where_grouping_is_not_known() -> None:
+    for text, comma in (("1.234", True), ("-12.345", True), ("1,234", False)):
+        with pytest.raises(UnitError, match="can be read as"):
+            parse_number(text, decimal_comma=comma, grouped=False)
+    assert parse_number("1.234,5", decimal_comma=True, grouped=False) == 1234.5
+    assert parse_number("1.234.567", decimal_comma=True, grouped=False) == 1234567.0
+    assert parse_number("1,234", decimal_comma=True, grouped=False) == 1.234
+    assert parse_number("1.234", decimal_comma=False, grouped=False) == 1.234

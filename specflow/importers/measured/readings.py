@@ -257,7 +257,7 @@ class _OddCells:
             return reason
         text = str(value)
         try:
-            reading, written = _parsed(text, self.decimal_comma)
+            reading, written = _parsed(text, self.decimal_comma, self.grid.grouped)
         except UnitError as error:
             return error.message + (f" ({error.hint})" if error.hint else "")
         if isinstance(reading, Blank):
@@ -279,12 +279,12 @@ class _OddCells:
 
 
 @lru_cache(maxsize=8192)
-def _parsed(text: str, decimal_comma: bool | None) -> tuple[Reading | Blank, Unit | None]:
+def _parsed(text: str, decimal_comma: bool | None, grouped: bool) -> tuple[Reading | Blank, Unit | None]:
     try:
-        return parse_reading(text, decimal_comma=decimal_comma), None
+        return parse_reading(text, decimal_comma=decimal_comma, grouped=grouped), None
     except UnitError as error:
         try:
-            return parse_reading_with_unit(text, decimal_comma=decimal_comma)
+            return parse_reading_with_unit(text, decimal_comma=decimal_comma, grouped=grouped)
         except UnitError:
             raise error from None
 

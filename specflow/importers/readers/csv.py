@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 from specflow.errors import FileError
 from specflow.importers.readers.delimiter import AmbiguousComma, Layout, find_layout
 from specflow.importers.readers.encoding import decode, without_nuls
@@ -34,6 +36,7 @@ def read_csv(source: Source) -> list[Grid]:
             comment_rows=frozenset(part.comments),
             is_text=True,
             decimal=layout.decimal,
+            grouped=layout.grouped,
             notes=(*notes, *part.notes),
         )
     ]
@@ -63,7 +66,7 @@ def _layout(source: Source, lines: list[str], comments: set[int]) -> Layout:
     if 1 in comments and lines[0].lower().startswith("sep="):
         delimiter = lines[0].rstrip("\r\n")[-1]
         layout = find_layout([line.replace(delimiter, "\t") for line in lines[1:] if line.strip()])
-        return Layout(delimiter, layout.width, layout.decimal if delimiter != "," else ".")
+        return replace(layout, delimiter=delimiter) if delimiter != "," else Layout(",", layout.width, ".")
     table = [line for number, line in enumerate(lines, start=1) if line.strip() and number not in comments]
     try:
         return find_layout(table or [line for line in lines if line.strip()])

@@ -23,17 +23,23 @@ _NUMBER = re.compile(r"[<>≤≥]?\s*[+\-−]?(?:[0-9]+(?:[.,][0-9]*)?|[.,][0-9]
 _SETTING = re.compile(r"[^0-9:=,][^:=,]*[:=]\s*[+\-−]?[0-9]+")
 _COMMA_IN_NUMBER = re.compile(r"[0-9],[0-9]")
 _WITH_THOUSANDS = re.compile(r"[+\-−]?[0-9]{1,3}(?:[ \u00a0\u202f'][0-9]{3})+[.,][0-9]+")
-_LIKE_THOUSANDS = re.compile(r"[+\-−]?[0-9]{1,3},[0-9]{3}")
+_LIKE_THOUSANDS = re.compile(r"[+\-−]?[0-9]{1,3}[.,][0-9]{3}")
+_GROUPED = {
+    ".": re.compile(r"[+\-−]?[1-9][0-9]{0,2}(?:(?:,[0-9]{3})+\.[0-9]+|(?:,[0-9]{3}){2,})"),
+    ",": re.compile(r"[+\-−]?[1-9][0-9]{0,2}(?:(?:\.[0-9]{3})+,[0-9]+|(?:\.[0-9]{3}){2,})"),
+}
+"""Numbers that can only have this decimal mark, and the other one between thousands."""
 
 
 @dataclass(frozen=True, slots=True)
 class Layout:
     """How the lines are parted. ``width`` is the usual number of fields; ``decimal`` is ``""`` when every number with
-    a comma could as well have it between thousands."""
+    a comma could as well have it between thousands; ``grouped``: the other mark was seen between thousands."""
 
     delimiter: str
     width: int
     decimal: str
+    grouped: bool = False
 
 
 class AmbiguousComma(Exception):
@@ -51,7 +57,8 @@ def find_layout(lines: Sequence[str]) -> Layout:
     fields = [field for line in sample for field in split(line, best)]
     if best == ",":
         _refuse_decimal_comma(sample, best_width)
-    return Layout(best, best_width, decimal_mark(fields))
+    mark = decimal_mark(fields)
+    return Layout(best, best_width, mark, is_grouped(fields, mark))
 
 
 def split(line: str, delimiter: str) -> list[str]:
@@ -137,12 +144,23 @@ def _score(sample: Sequence[str], delimiter: str) -> tuple[float, int]:
 
 
 def decimal_mark(fields: Sequence[str]) -> str:
-    """The mark before decimals in these fields; ``""`` when each comma could as well stand between thousands."""
+    """The mark before decimals in these fields, the commoner where both occur (numbers with the other one are refused
+    one by one then); ``""`` when each comma could as well stand between thousands."""
     numbers = [field for field in fields if is_number(field) or _WITH_THOUSANDS.fullmatch(field)]
     commas = [number for number in numbers if "," in number]
-    if not commas or any("." in number for number in numbers):
-        return "."
-    return "" if all(_LIKE_THOUSANDS.fullmatch(number) for number in commas) else ","
+    certain = sum(not _LIKE_THOUSANDS.fullmatch(number) for number in commas)
+    certain += sum(_GROUPED[","].fullmatch(field) is not None for field in fields)
+    points = [number for number in numbers if "." in number]
+    certain_points = sum(not _LIKE_THOUSANDS.fullmatch(number) for number in points)
+    certain_points += sum(_GROUPED["."].fullmatch(field) is not None for field in fields)
+    if certain != certain_points:
+        return "," if certain > certain_points else "."
+    return "" if commas and not points else "."
+
+
+def is_grouped(fields: Sequence[str], decimal: str) -> bool:
+    """Whether the other mark stands between thousands, in a number that says so itself."""
+    return bool(decimal) and any(_GROUPED[decimal].fullmatch(field) for field in fields)
 
 
 def _refuse_decimal_comma(sample: Sequence[str], width: int) -> None:

@@ -17,6 +17,9 @@ _MARKS = (
 )
 _SAMPLE = 4096
 _INSIDE_NUMBER = re.compile(r"(?<=[0-9.eE+\-])\0+(?=[0-9.eE+\-])")
+_DIGIT = re.compile("[0-9]")
+_FIELD_WITH_NUL = re.compile(r"(?<![^\s,;|\"])[^\s,;|\"\0]*\0[^\s,;|\"]*")
+_FIELD_WITH_NUL_AND_COMMA = re.compile(r"(?<![^\s;|\"])[^\s;|\"\0]*\0[^\s;|\"]*")
 _INSIDE_NUMBER_WITH_COMMA = re.compile(r"(?<=[0-9.,eE+\-])\0+(?=[0-9.,eE+\-])")
 
 
@@ -45,10 +48,28 @@ def decode(source: Source, keep_nuls: bool = False) -> tuple[str, list[str]]:
 
 
 def without_nuls(text: str, comma_parts: bool) -> str:
-    """The text without NUL. Those with which instruments pad fields stand at the ends of fields; inside a number NUL
-    has taken the place of a digit, and becomes U+FFFD, which no number contains."""
+    """The text without NUL. Those with which instruments pad fields stand at the ends of fields, in most of the lines;
+    inside a number, or at the end of one in a file that pads nothing else, NUL may have taken the place of a digit, and
+    becomes U+FFFD, which no number contains."""
     inside = _INSIDE_NUMBER if comma_parts else _INSIDE_NUMBER_WITH_COMMA
-    return inside.sub("\ufffd", text).replace("\0", "")
+    fields = _FIELD_WITH_NUL if comma_parts else _FIELD_WITH_NUL_AND_COMMA
+    text = inside.sub("\ufffd", text)
+    if "\0" in text and not _is_padded(text):
+        text = fields.sub(_doubted, text)
+    return text.replace("\0", "")
+
+
+def _doubted(match: re.Match[str]) -> str:
+    """A field with NUL at an end, which is doubtful where it is a number: ``12.\\0``."""
+    bare = match[0].replace("\0", "")
+    is_number = _DIGIT.search(bare) is not None and not bare.strip("0123456789.,+-eE")
+    return match[0].replace("\0", "\ufffd") if is_number else bare
+
+
+def _is_padded(text: str) -> bool:
+    """Whether most of the lines that hold a digit hold NUL, too."""
+    lines = [line for line in text.split("\n") if _DIGIT.search(line)]
+    return 2 * sum("\0" in line for line in lines) > len(lines)
 
 
 def _decode(source: Source, notes: list[str]) -> str:

@@ -34,7 +34,8 @@ class Grid:
     """One sheet of a workbook, or one csv file.
 
     ``rows[0][0]`` is the cell at (``first_row``, ``first_column``); rows may be of unequal length. ``is_text`` says
-    that all cells are text as written (csv); ``decimal`` is then the decimal mark found, ``""`` when it is ambiguous.
+    that all cells are text as written (csv); ``decimal`` is then the decimal mark found, ``""`` when it is ambiguous,
+    and ``grouped`` says whether the other mark was seen where it can only stand between thousands.
     ``comment_rows`` are csv lines that began with a comment mark, which is taken off. ``notes`` say what the reader
     did or saw on the way. ``turned`` says that rows and columns have changed places (``turn``): ``address`` and
     ``column_name`` still give the true place.
@@ -53,6 +54,7 @@ class Grid:
     comment_rows: frozenset[int] = frozenset()
     is_text: bool = False
     decimal: str = "."
+    grouped: bool = False
     notes: tuple[str, ...] = ()
     turned: bool = False
 

@@ -6,7 +6,7 @@ from collections.abc import Callable
 from html.parser import HTMLParser
 
 from specflow.errors import FileError
-from specflow.importers.readers.delimiter import decimal_mark
+from specflow.importers.readers.delimiter import decimal_mark, is_grouped
 from specflow.importers.readers.encoding import decode
 from specflow.importers.readers.grid import Grid
 from specflow.importers.readers.places import CellRange
@@ -35,17 +35,24 @@ def read_html(source: Source) -> list[Grid]:
             "this is a web page without a table", where=source.name, hint="export the table as csv or .xlsx"
         )
     return [
-        Grid(
-            name=source.name if len(tables) == 1 else f"table {place}",
-            rows=table.rows,
-            file=source.name,
-            merged=tuple(table.merged),
-            is_text=True,
-            decimal=decimal_mark([str(cell) for row in table.rows for cell in row]),
-            notes=tuple(notes),
-        )
+        _grid(table, source.name, f"table {place}" if len(tables) > 1 else source.name, tuple(notes))
         for place, table in enumerate(tables, start=1)
     ]
+
+
+def _grid(table: _Table, file: str, name: str, notes: tuple[str, ...]) -> Grid:
+    texts = [str(cell) for row in table.rows for cell in row]
+    decimal = decimal_mark(texts)
+    return Grid(
+        name=name,
+        rows=table.rows,
+        file=file,
+        merged=tuple(table.merged),
+        is_text=True,
+        decimal=decimal,
+        grouped=is_grouped(texts, decimal),
+        notes=notes,
+    )
 
 
 class _Table:

@@ -114,6 +114,7 @@ class _Reading:
             comment_rows=frozenset(comments),
             is_text=True,
             decimal=self._layout.decimal,
+            grouped=self._layout.grouped,
         )
 
     def _sample(self) -> list[str]:

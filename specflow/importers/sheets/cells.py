@@ -77,7 +77,7 @@ def cell_number(grid: Grid, row: int, column: int) -> float | None:
 def text_number(text: str, decimal: str = ".") -> float:
     """Return the finite number that a text writes. Raises CellFault."""
     try:
-        number = parse_number(text.replace(",", ".") if decimal == "," else text)
+        number = parse_number(text, decimal_comma=True if decimal == "," else None, grouped=False)
     except UnitError as error:
         raise CellFault(f"{text!r} is not a number", "write a plain number") from error
     if not math.isfinite(number):

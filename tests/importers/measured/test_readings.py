@@ -234,3 +234,19 @@ def test_a_placeholder_among_conditions_and_uncertainties_is_rejected(tmp_path: 
     rows = [["f (GHz)", "Gain (dB)", "U (dB, k=2)"], [27.5, 20, 0.4], [-999, 20, 0.4], [30, 20, 9999]]
     table = taken(one_table(book(tmp_path / "a.xlsx", rows)))
     assert set(rejected(table)) == {"A3", "C4"}
+
+
+@pytest.mark.parametrize(
+    ("rows", "cell"), [("27,5;20,5\n28;1.234\n", "1.234"), ("27.5;20.5\n28;1,234\n", "1,234")]
+)
+def test_one_group_behind_the_other_mark_is_asked_about(tmp_path: Path, rows: str, cell: str) -> None:
+    table = taken(one_table(text(tmp_path / "a.csv", f"f (GHz);Gain (dB)\n{rows}")))
+    assert rejected(table) == {
+        "B3": f"'{cell}' can be read as 1.234 or as 1234 (write it with its decimals, or without a mark between "
+        "thousands)"
+    }
+
+
+def test_one_group_is_of_thousands_where_others_are_so_for_certain(tmp_path: Path) -> None:
+    table = taken(one_table(text(tmp_path / "a.csv", "f (GHz);Gain (dB)\n27,5;1.020,5\n28;1.234\n")))
+    assert low(table, "Gain") == [1020.5, 1234.0]

@@ -2,6 +2,7 @@ from __future__ import annotations
 
 from pathlib import Path
 
+import numpy
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
@@ -284,3 +285,35 @@ def test_commas_below_headers_with_semicolons_may_be_decimals(tmp_path: Path) ->
     path = tmp_path / "a.csv"
     path.write_text("Gain (dB);f (GHz)\n20;27.5\n1,5\n1,5\n", encoding="utf-8")
     assert "the comma seems to part both the fields and the decimals" in refused(lambda: open_grids(path))
+
+
+@pytest.mark.parametrize("damaged", [b"12.\0", b"\0.5", b"1\0", b"1\0.5"])
+def test_a_nul_that_may_have_replaced_a_digit_leaves_no_number(tmp_path: Path, damaged: bytes) -> None:
+    grid = grid_of(tmp_path / "a.csv", b"Serial,SN1\0\nf,G\n1,2\n3," + damaged + b"\n5,6\n7,8\n")
+    assert grid.value(1, 2) == "SN1"
+    numbers, odd = grid.column_floats(2, 3, 7)
+    assert odd == [4] and numpy.isnan(numbers[1])
+
+
+@pytest.mark.parametrize(
+    ("text", "decimal", "grouped"),
+    [
+        ("f;G\n27,5;1.234\n28,5;2\n", ",", False),
+        ("f;G\n27,5;1.234,5\n28,5;1.234\n", ",", True),
+        ("f;G\n27.5;1,234\n28.5;2\n", ".", False),
+        ("f;G\n27.5;1,234,567\n28.5;1,234\n", ".", True),
+        ("Version;1.2\nf;G\n27,5;3\n28,5;2\n", ",", False),
+        ("f;G\n1.234;1,234\n2.345;2\n", ".", False),
+        ("f;G\n1;1,234\n2;2,345\n", "", False),
+    ],
+)
+def test_marks_count_where_they_can_only_be_one_thing(
+    tmp_path: Path, text: str, decimal: str, grouped: bool
+) -> None:
+    grid = grid_of(tmp_path / "a.csv", text)
+    assert (grid.decimal, grid.grouped) == (decimal, grouped)
+
+
+def test_a_nul_behind_a_decimal_comma_leaves_no_number(tmp_path: Path) -> None:
+    grid = grid_of(tmp_path / "a.csv", b"f;G\n27,5;20,5\n28,5;20,\0\n28,5;20,5\n29,5;5,5\n")
+    assert grid.column_floats(2, 2, 6)[1] == [3]
