@@ -19,15 +19,17 @@ def rules(code: CodeArgument = "", as_json: JsonOption = False) -> None:
     """Explain the rules.
 
     Without a code every rule is listed, with the severity that it has unless the project's policy sets another. With
-    one: why it matters, an example that it reports, one that it does not, and what to do.
+    one: why it matters, an example that it reports, one that it does not, and what to do. What loading and attaching
+    report has codes, too, which are explained in a line.
     """
     from specflow.cli.tables import put_table, table_as_json
-    from specflow.workflows.rule_catalogue import explained_rule, rule_catalogue, rule_named
+    from specflow.workflows.explained_code import explained_as_json, explained_code
+    from specflow.workflows.rule_catalogue import rule_catalogue
 
     if code and as_json:
-        put_json(rule_named(code).model_dump(mode="json"))
+        put_json(explained_as_json(code))
     elif code:
-        put_table(explained_rule(code))
+        put_table(explained_code(code))
     elif as_json:
         put_json(table_as_json(rule_catalogue()))
     else:

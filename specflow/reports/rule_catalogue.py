@@ -56,6 +56,18 @@ def rule_table(rule: RuleDescription) -> ReportTable:
     )
 
 
+def import_finding_table(code: str, meaning: str) -> ReportTable:
+    """Return what a finding of loading or attaching means; it is no rule, so it cannot be weighed."""
+    when = "while a file is loaded or attached, with its cell; no severity of the project changes it"
+    return ReportTable(
+        key="rule",
+        title=code,
+        intro=meaning,
+        columns=RULE_COLUMNS,
+        rows=(ReportRow(id="Reported", cells=(text("Reported"), text(when))),),
+    )
+
+
 def severity_cell(rule: RuleDescription) -> ReportCell:
     """Return the severity in its tone."""
     return ReportCell(text=rule.severity.value, tone=SEVERITY_TONES[rule.severity])

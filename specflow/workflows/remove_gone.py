@@ -17,6 +17,12 @@ from specflow.parameters.relations import parameters_telling
 #: The finding of the importer that names what an earlier state of the workbook gave.
 GONE = "workbook-row-gone"
 
+#: Code → what it means.
+REMOVAL_FINDINGS: dict[str, str] = {
+    "requirement-in-use": "A requirement is not removed: a budget serves nothing else.",
+    "requirement-removed": "A requirement is removed, with what is about nothing else.",
+}
+
 
 def with_gone_removed(draft: Draft, snapshot: Snapshot) -> Draft:
     """Return the draft with the requirements removed that its workbook no longer has, and findings that say what goes.

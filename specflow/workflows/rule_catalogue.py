@@ -1,4 +1,4 @@
-"""Explain the rules: all of them, or the one that a code names."""
+"""The rules: all of them, and the one that a code names."""
 
 from __future__ import annotations
 
@@ -9,18 +9,13 @@ from specflow.errors import SpecflowError
 from specflow.model.base import code_key
 from specflow.model.finding import RuleDescription
 from specflow.model.report import ReportTable
-from specflow.reports.rule_catalogue import catalogue_table, rule_table
+from specflow.reports.rule_catalogue import catalogue_table
 from specflow.rules import RULE_BY_CODE, RULES
 
 
 def rule_catalogue() -> ReportTable:
     """Return all rules, in the order in which they are listed."""
     return catalogue_table([rule.description for rule in RULES])
-
-
-def explained_rule(code: str) -> ReportTable:
-    """Return the explanation of one rule. SpecflowError for a code that is none."""
-    return rule_table(rule_named(code))
 
 
 def rule_named(code: str) -> RuleDescription:

@@ -133,6 +133,14 @@ def test_one_rule_is_explained(command: Command) -> None:
     assert (data["code"], data["severity"], data["noun"]) == ("failing", "error", "requirement")
 
 
+def test_codes_of_findings_that_no_rule_makes_are_explained_in_a_line(command: Command) -> None:
+    outcome = command("rules", "Workbook-No-Unit")
+    assert outcome.code == ExitCode.CLEAN and "A limit has no unit" in outcome.out
+    data = json.loads(command("rules", "attach-looks-slipped", "--json").out)
+    assert data["code"] == "attach-looks-slipped" and "decimal" in data["title"]
+    assert "budget" in command("rules", "requirement-in-use").out
+
+
 def test_an_unknown_rule_is_refused_with_what_is_near(command: Command) -> None:
     outcome = command("rules", "faling")
     assert (outcome.code, outcome.out) == (ExitCode.BAD_INPUT, "")
