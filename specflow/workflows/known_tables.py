@@ -9,6 +9,8 @@ import numpy as np
 
 from specflow.budgets.as_known import KnownServed
 from specflow.budgets.knowledge import KnownLine
+from specflow.budgets.reallocation import Miss
+from specflow.budgets.required import Required
 from specflow.model.report import CellTone, ReportCell, ReportRow, ReportTable
 from specflow.reports.figures import margin, number, text
 from specflow.units import format_unit, parse_unit, tolerance_unit
@@ -140,8 +142,8 @@ def _proposal(found: KnownBudget) -> ReportTable:
 
 def known_as_json(found: KnownBudget) -> dict[str, Any]:
     """Return a budget as known as data for scripts."""
-    known = found.known
-    places = known.result.required.size
+    known, changes = found.known, found.reallocation
+    required = known.result.required
     planned = {one.requirement.id: one.smallest_margin for one in known.planned.served}
     return {
         "budget": known.budget.id,
@@ -150,65 +152,71 @@ def known_as_json(found: KnownBudget) -> dict[str, Any]:
         "as_of": found.as_of.isoformat(),
         "confidence": known.confidence,
         "tables": list(found.tables),
-        "limits": [
-            {
-                "requirement": one.served.requirement.id,
-                "unit": one.served.margin_unit,
-                "planned": _plain(planned[one.served.requirement.id]),
-                "known": _plain(one.served.smallest_margin),
-                "predicted": _plain(_at(one, one.worst, "predicted")),
-                "probability": _plain(_at(one, one.worst, "probability")),
-                "closes": one.served.closes,
-            }
-            for one in known.served
-        ],
-        "lines": [
-            {
-                "position": line.read.line.position,
-                "block": line.read.line.block,
-                "parameter": line.read.line.parameter,
-                "unit": line.read.line.unit,
-                "places": [
-                    {
-                        "at": known.result.required.words(place),
-                        "value": float(line.value[place]),
-                        "source": line.source_words(place),
-                        "spread": float(line.spread[place]),
-                        "common": float(line.common[place]),
-                    }
-                    for place in range(places)
-                ],
-            }
-            for line in known.lines
-        ],
-        "misses": [
-            {
-                "line": one.line,
-                "value": one.value,
-                "allowed": one.allowed,
-                "short": one.short,
-                "unit": one.unit,
-                "at": one.words,
-                "source": one.source,
-                "costs": [
-                    {"requirement": cost.requirement, "before": cost.before, "after": cost.after, "unit": cost.unit}
-                    for cost in one.costs
-                ],
-            }
-            for one in found.reallocation.misses
-        ],
+        "limits": [_limit_as_json(one, planned[one.served.requirement.id]) for one in known.served],
+        "lines": [_line_as_json(line, required) for line in known.lines],
+        "misses": [_miss_as_json(one) for one in changes.misses],
         "slack": [
             {"line": one.line, "amount": one.amount, "unit": one.unit, "source": one.source}
-            for one in found.reallocation.slack
+            for one in changes.slack
         ],
-        "still_closes": closure_as_json(found.reallocation.with_misses),
+        "still_closes": closure_as_json(changes.with_misses),
         "proposal": [
-            {"block": one.block, "parameter": one.parameter, "limit": limit_text_of(one, known.result.required)}
-            for one in found.reallocation.proposal
+            {"block": one.block, "parameter": one.parameter, "limit": limit_text_of(one, required)}
+            for one in changes.proposal
         ],
-        "sentence": found.reallocation.sentence,
+        "sentence": changes.sentence,
         "notes": list(found.notes),
-    }  # fmt: skip
+    }
+
+
+def _limit_as_json(one: KnownServed, planned: float) -> dict[str, Any]:
+    return {
+        "requirement": one.served.requirement.id,
+        "unit": one.served.margin_unit,
+        "planned": _plain(planned),
+        "known": _plain(one.served.smallest_margin),
+        "predicted": _plain(_at(one, one.worst, "predicted")),
+        "probability": _plain(_at(one, one.worst, "probability")),
+        "closes": one.served.closes,
+    }
+
+
+def _line_as_json(line: KnownLine, required: Required) -> dict[str, Any]:
+    own = line.read.line
+    places = [
+        {
+            "at": required.words(place),
+            "value": float(line.value[place]),
+            "source": line.source_words(place),
+            "spread": float(line.spread[place]),
+            "common": float(line.common[place]),
+        }
+        for place in range(required.size)
+    ]
+    return {
+        "position": own.position,
+        "block": own.block,
+        "parameter": own.parameter,
+        "unit": own.unit,
+        "places": places,
+    }
+
+
+def _miss_as_json(one: Miss) -> dict[str, Any]:
+    costs = [
+        {"requirement": cost.requirement, "before": cost.before, "after": cost.after, "unit": cost.unit}
+        for cost in one.costs
+    ]
+    return {
+        "line": one.line,
+        "value": one.value,
+        "allowed": one.allowed,
+        "short": one.short,
+        "unit": one.unit,
+        "at": one.words,
+        "source": one.source,
+        "costs": costs,
+    }
 
 
 def _plain(value: float) -> float | None:

@@ -30,6 +30,7 @@ from specflow.model.snapshot import Snapshot
 from specflow.store import ProjectStore
 from specflow.workflows.as_known import KnownBudget
 from specflow.workflows.known_lines import COMPOSITE_MODEL
+from specflow.workflows.numbering import next_number
 
 _HEAD = ("conditions", "result", "standard uncertainty", "unit")
 
@@ -91,15 +92,6 @@ def _content(found: KnownBudget, served: KnownServed) -> bytes:
     return text.getvalue().encode()
 
 
-def _next(snapshot: Snapshot, kind: type[Document], prefix: str) -> int:
-    numbers = [
-        int(rest)
-        for document in snapshot.all(kind)
-        if (rest := str(getattr(document, "id", "")).removeprefix(prefix)).isdecimal()
-    ]
-    return max(numbers, default=0) + 1
-
-
 def _file(
     snapshot: Snapshot,
     store: ProjectStore,
@@ -111,7 +103,7 @@ def _file(
     known = found.known
     of = known.serial or "type"
     return EvidenceFile(
-        id=f"F-{_next(snapshot, EvidenceFile, 'F-') + number}",
+        id=f"F-{next_number(snapshot, EvidenceFile, 'F-') + number}",
         name=f"{known.budget.id} as known {of} {served.served.requirement.id} r{found.project_revision}.csv",
         sha256=hashlib.sha256(content).hexdigest(),
         size=len(content),
@@ -133,17 +125,6 @@ def _table(
     now: str,
 ) -> EvidenceTable:
     known, requirement = found.known, served.served.requirement
-    required = known.result.required
-    conditions = [
-        ConditionColumn(
-            dimension=name,
-            kind="numeric" if name in required.columns.numeric else "text",
-            unit=required.columns.units.get(name, ""),
-            column=1,
-            header="conditions",
-        )
-        for name in required.columns.names
-    ]
     value = ValueColumn(
         name="result",
         quantity=requirement.quantity,
@@ -155,15 +136,15 @@ def _table(
         coverage_factor=1.0,
     )
     return EvidenceTable(
-        id=f"EV-{_next(snapshot, EvidenceTable, 'EV-') + number}",
+        id=f"EV-{next_number(snapshot, EvidenceTable, 'EV-') + number}",
         file=file.id,
         title=f"{requirement.id} by the budget {known.budget.id}, as known",
         block=requirement.block,
         requirement=requirement.id,
         method=Method.ANALYSIS,
-        rows=required.size,
+        rows=known.result.required.size,
         values=(value,),
-        conditions=tuple(conditions),
+        conditions=_condition_columns(known.result.required.columns),
         digest=file.sha256,
         table_key=f"{known.budget.id} {requirement.id} {known.serial}",
         performer=by,
@@ -174,6 +155,20 @@ def _table(
         accepted_by=by,
         accepted_at=now,
         provisional=snapshot.project.policy.second_review,
+    )
+
+
+def _condition_columns(places: Columns) -> tuple[ConditionColumn, ...]:
+    """Every condition of the places of evaluation: in the file they stand in words, all in its first column."""
+    return tuple(
+        ConditionColumn(
+            dimension=name,
+            kind="numeric" if name in places.numeric else "text",
+            unit=places.units.get(name, ""),
+            column=1,
+            header="conditions",
+        )
+        for name in places.names
     )
 
 
