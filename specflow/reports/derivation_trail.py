@@ -59,7 +59,9 @@ def table_derivation_steps(
             depth=depth + 1,
             kind="input",
             id=source.id,
-            text=f"{source.rows} rows of {name}" + ("" if same else ", whose content has changed since"),
+            text=f"{source.rows} rows of {name}"
+            + (f", {source.title}" if source.title else "")
+            + ("" if same else ", whose content has changed since"),
             tone=CellTone.PLAIN if same else CellTone.DOUBTFUL,
             origin=Origin(file=name, sha256=file.sha256 if file else "", sheet=source.sheet),
         )

@@ -4,8 +4,11 @@ from __future__ import annotations
 
 from collections.abc import Container, Iterator
 
+import numpy as np
+
 from specflow.model.base import code_key
 from specflow.model.card import TrailStep
+from specflow.model.columns import Columns
 from specflow.model.evidence import ConditionColumn, EvidenceFile, EvidenceTable, ValueColumn
 from specflow.model.origin import Origin, column_letters
 from specflow.model.snapshot import Snapshot
@@ -57,25 +60,38 @@ def reading_steps(table: EvidenceTable, snapshot: Snapshot, depth: int) -> Itera
 
 
 def column_steps(
-    table: EvidenceTable, depth: int, *, parameters: Container[str] | None = None
+    table: EvidenceTable, snapshot: Snapshot, depth: int, *, parameters: Container[str] | None = None
 ) -> Iterator[TrailStep]:
     """Give the columns: of each what it means, where its unit was found, what was converted, where u is from.
 
-    Of the value columns only those of ``parameters`` (keys), if they are given.
+    Of the value columns only those of ``parameters`` (keys), if they are given. A condition that was stated for all
+    rows stands with its value, which is in no column of the file.
     """
+    is_stated = any(condition.column is None for condition in table.conditions)
+    loaded = snapshot.load_columns([table.id]).get(table.id) if is_stated else None
     for condition in table.conditions:
-        yield TrailStep(depth=depth, kind="condition", id=table.id, text=_condition_words(condition))
+        stands = _stands(condition, loaded.conditions) if loaded and condition.column is None else ""
+        yield TrailStep(depth=depth, kind="condition", id=table.id, text=_condition_words(condition, stands))
     for column in table.values:
         if parameters is not None and code_key(column.quantity.parameter) not in parameters:
             continue
         yield TrailStep(depth=depth, kind="column", id=table.id, text=_column_words(column))
 
 
-def _condition_words(condition: ConditionColumn) -> str:
+def _stands(condition: ConditionColumn, columns: Columns) -> str:
+    """The one value of a condition over all rows, "" where it has several or none."""
+    if condition.dimension in columns.text:
+        words = {columns.text[condition.dimension].word(row) for row in range(columns.size)}
+        return words.pop() if len(words) == 1 else ""
+    values = np.unique(columns.numeric.get(condition.dimension, np.zeros(0)))
+    return f"{values[0]:.10g} {condition.unit}".rstrip() if len(values) == 1 else ""
+
+
+def _condition_words(condition: ConditionColumn, stands: str) -> str:
     name = condition.dimension.replace("_", " ")
     what = f"{name} in {condition.unit}" if condition.unit else name
     if condition.column is None:
-        return f"{what}, {condition.stated_by}"
+        return f"{f'{name} {stands}' if stands else what}, {condition.stated_by}"
     source = f" (unit from {condition.unit_from})" if condition.unit_from and condition.unit else ""
     return f"{_place(condition.column, condition.header)}: {what}{source}"
 

@@ -208,7 +208,9 @@ def _files(
         yield file_step(tables[0], snapshot).model_copy(update={"depth": 1, "origin": None})
         for table in tables if how_read else ():
             yield from reading_steps(table, snapshot, 2)
-            yield from column_steps(table, 3, parameters=parameters_telling(requirement.quantity.parameter))
+            yield from column_steps(
+                table, snapshot, 3, parameters=parameters_telling(requirement.quantity.parameter)
+            )
 
 
 def deciding(found: PointResults | None, places: Sequence[int], most: int) -> Sequence[int]:
@@ -282,6 +284,7 @@ def table_trail(
     governed = served.get(code_key(table.id), {})
     received = received_step(table, snapshot)
     accepted = f"{table.accepted_by or 'nobody yet'} {table.accepted_at}".strip()
+    titled = f" ({table.title})" if table.title else ""
     steps = [
         file_step(table, snapshot),
         *([received] if received else []),
@@ -289,10 +292,10 @@ def table_trail(
             depth=0,
             kind="table",
             id=table.id,
-            text=f"{table.rows} rows for block {table.block}, accepted by {accepted}",
+            text=f"{table.rows} rows for block {table.block}{titled}, accepted by {accepted}",
         ),
         *reading_steps(table, snapshot, 1),
-        *column_steps(table, 1),
+        *column_steps(table, snapshot, 1),
         *table_derivation_steps(table, snapshot, 1),
     ]
     for code, count in governed.items():

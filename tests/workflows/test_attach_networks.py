@@ -246,3 +246,20 @@ def test_active_reflection_over_scan_is_derived_from_all_entries_and_again(store
     )
     again = preview_derive(store, options)
     assert again.is_unchanged and again.stored_as == "EV-2"
+
+
+def test_a_trace_says_the_reference_impedance_and_the_conditions_with_their_values(
+    store: ProjectStore,
+) -> None:
+    """A gain means something between stated impedances only, and a condition of the header stands in no column."""
+    attached(store, DATA / "lowpass_125c.s2p", **FILTER, input_level="-30 dBm")
+    rows = {code: trace(store, date(2026, 5, 5), code).rows for code in ("R-IL", "EV-1")}
+    of_requirement, of_table = (
+        [cell.text for row in rows[code] for cell in row.cells] for code in ("R-IL", "EV-1")
+    )
+    title = "scattering parameters of 2 ports at 50 ohm"
+    assert any(text.endswith(title) and "rows of lowpass_125c.s2p" in text for text in of_requirement)
+    assert any("rows for block FIL" in text and title in text for text in of_table)
+    for texts in (of_requirement, of_table):
+        assert any(text.startswith("temperature case 125 °C, stated") for text in texts)
+        assert any(text.startswith("input level -30 dBm, stated by the person") for text in texts)
