@@ -66,12 +66,18 @@ def _axis(conditions: Columns, known: Places) -> str:
 
 
 def _groupings(conditions: Columns, items: TextColumn, axis: str, known: Places) -> Iterator[list[Places]]:
-    """Yield the readings in groups of like conditions: along the axis of each item; and of all items at one place."""
+    """Yield the readings in groups of like conditions: along the axis of each item; and of all items at one place.
+
+    Where no item has three readings, those of all items are compared along the axis.
+    """
     settings = [values[known] for name, values in conditions.numeric.items() if name != axis]
     settings += [words.codes[known].astype(float) for words in conditions.text.values()]
     along = conditions.numeric[axis][known] if axis else np.arange(len(known), dtype=float)
     item = items.codes[known].astype(float)
-    yield _groups([item, *settings], along, known)
+    of_items = _groups([item, *settings], along, known)
+    yield of_items
+    if max(map(len, of_items)) < 3:
+        yield _groups(settings, along, known)
     if len(items.labels) > 2 and axis:
         yield [group for group in _groups([along, *settings], item, known) if len(group) <= _SMALL * 10]
 

@@ -53,6 +53,12 @@ def test_an_item_off_the_rest_at_like_conditions() -> None:
     assert found.place == 3
 
 
+def test_items_of_two_readings_each_are_compared_together() -> None:
+    values = np.array([45.1, 45.3, 45.2, 0.448])
+    (found,) = slips(values, "dBW", items=["1", "1", "2", "2"])
+    assert found.place == 3 and "100" in found.words
+
+
 @pytest.mark.parametrize(
     "values",
     [
