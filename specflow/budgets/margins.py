@@ -48,7 +48,8 @@ class Bar:
         values = result if self.convert.is_identity else self.convert(result)
         shape = (-1,) + (1,) * (values.ndim - 1)
         lower, upper = self.lower[slice_].reshape(shape), self.upper[slice_].reshape(shape)
-        margin = np.minimum(upper - values, values - lower)
+        with np.errstate(invalid="ignore"):  # no result (-inf dBm) against no bound: the other side decides
+            margin = np.fmin(upper - values, values - lower)
         margin -= self.reserve
         missing = ~self.required[slice_]
         if missing.any():

@@ -174,9 +174,12 @@ def test_the_blocker_that_is_allowed_gives_just_the_rise_that_is_allowed() -> No
 
 def test_no_blocker_is_allowed_where_the_transmitter_takes_the_whole_rise() -> None:
     stages = ({**LNA, "noise_density": -100.0, "desensitisation": 1.0}, MIX)
-    assert np.isneginf(
-        result(*stages, parameter="blocking_level", unit="dBm", **FIELDS).of("blocking_level").result
-    )
+    found = result(*stages, parameter="blocking_level", unit="dBm", **FIELDS).of("blocking_level")
+    assert np.isneginf(found.result)
+    assert found.served[0].margin.tolist() == [math.inf] and found.served[0].closes is True
+    budget = a_chain(*stages, parameter="blocking_level", **FIELDS)
+    wanted = evaluate_budget(budget, project_of(budget, limit=at_least(-30.0, "dBm")), DICTIONARY)
+    assert wanted.of("blocking_level").served[0].closes is False, "no blocker at all is tolerated"
 
 
 @pytest.mark.parametrize(
