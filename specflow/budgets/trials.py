@@ -31,6 +31,7 @@ MOST_TRIALS = 100_000_000
 QUANTILES = (0.001, 0.01, 0.05, 0.1, 0.5, 0.9, 0.95, 0.99, 0.999)
 _BINS = 60
 _CONFIDENCE = 0.95
+_EDGE = 2.326  # of a normal distribution one in a hundred lies beyond it
 _BLOCK = 4 * CHUNK
 
 
@@ -49,9 +50,17 @@ class Probability:
         if not self.trials:
             return "not known: no limit is known at any condition"
         return (
-            f"{100 * self.value:.4g} % ({100 * self.low:.4g} to {100 * self.high:.4g} % with 95 % confidence, "
-            "sampling only: what is assumed of the lines is not part of it)"
+            f"{percent_words(self.value)} % ({percent_words(self.low)} to {percent_words(self.high)} % with 95 % "
+            "confidence, sampling only: what is assumed of the lines is not part of it)"
         )
+
+
+def percent_words(share: float) -> str:
+    """Return a share in per cent to four digits, with more where it would read 100 or 0 and is neither."""
+    digits = 4
+    while (shown := f"{100 * share:.{digits}g}") == "100" and share < 1.0 and digits < 12:
+        digits += 1
+    return shown
 
 
 @dataclass(frozen=True, eq=False)
@@ -59,7 +68,8 @@ class ServedChance:
     """One requirement over all trials.
 
     ``probability`` (n,) that a specimen meets the limit at each place, NaN where nothing is required; ``joint``: that
-    it meets it at all places. ``worst`` float32 (trials,) is the worst margin of each specimen in ``margin_unit``, +inf
+    it meets it at all places. ``place``: where most specimens miss it, or come nearest to it where none does; -1 where
+    nothing is required. ``worst`` float32 (trials,) is the worst margin of each specimen in ``margin_unit``, +inf
     where the limit is not known anywhere: 4 bytes a trial, all that is kept of it.
     """
 
@@ -67,6 +77,7 @@ class ServedChance:
     margin_unit: str
     probability: Floats
     joint: Probability
+    place: int
     worst: Margins
 
     def quantile(self, part: float) -> float:
@@ -280,16 +291,18 @@ class _Run:
 
 
 def _result(run: _Run, tally: _Tally, seed: int) -> MonteCarloResult:
-    chances = [
-        _chance(bar, passes, worst, run.trials)
-        for (_, bar), passes, worst in zip(run.bars, tally.passes, tally.worst, strict=True)
-    ]
+    rows = list(zip(run.bars, tally.passes, tally.worst, strict=True))
     outputs = []
     for place, one in enumerate(run.nominal.outputs):
-        mean = tally.sums[place] / run.trials
-        variance = np.maximum(tally.squares[place] / run.trials - mean**2, 0.0)
-        served = tuple(chance for chance, (owner, _) in zip(chances, run.bars, strict=True) if owner == place)
-        outputs.append(OutputChance(one.parameter, one.unit, one.result + mean, np.sqrt(variance), served))
+        apart = tally.sums[place] / run.trials
+        spread = np.sqrt(np.maximum(tally.squares[place] / run.trials - apart**2, 0.0))
+        mean = one.result + apart
+        served = tuple(
+            _chance(bar, passes, worst, run.trials, _edge(bar, mean, spread))
+            for (owner, bar), passes, worst in rows
+            if owner == place
+        )
+        outputs.append(OutputChance(one.parameter, one.unit, mean, spread, served))
     met = np.ones(run.trials, np.bool_)
     for worst in tally.worst:
         met &= worst >= 0
@@ -299,10 +312,16 @@ def _result(run: _Run, tally: _Tally, seed: int) -> MonteCarloResult:
     return MonteCarloResult(run.chain.budget, run.nominal, run.trials, seed, tuple(outputs), joint, notes)
 
 
-def _chance(bar: Bar, passes: NDArray[np.int64], worst: Margins, trials: int) -> ServedChance:
+def _edge(bar: Bar, mean: Floats, spread: Floats) -> Floats:
+    """Return the margin (n,) at the end of what is drawn, NaN where nothing is required: it only ranks the places."""
+    return np.fmin(bar.margin(mean - _EDGE * spread), bar.margin(mean + _EDGE * spread))
+
+
+def _chance(bar: Bar, passes: NDArray[np.int64], worst: Margins, trials: int, edge: Floats) -> ServedChance:
     share = np.where(bar.required, passes / trials, np.nan)
     joint = probability(int(np.count_nonzero(worst >= 0)), trials) if bar.required.any() else UNKNOWN
-    return ServedChance(bar.requirement, bar.margin_unit, share, joint, worst)
+    place = int(np.lexsort((edge, share))[0]) if bar.required.any() else -1
+    return ServedChance(bar.requirement, bar.margin_unit, share, joint, place, worst)
 
 
 UNKNOWN = Probability(float("nan"), 0.0, 1.0, 0)

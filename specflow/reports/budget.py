@@ -20,6 +20,7 @@ from specflow.model.budget_outcome import (
 )
 from specflow.model.report import Align, CellTone, Report, ReportCell, ReportColumn, ReportRow, ReportTable
 from specflow.parameters import Dictionary
+from specflow.reports.chances import chances_table
 from specflow.reports.figures import DASH, interval, margin, number, rounded, text, with_unit
 
 FIGURE_TITLES = {
@@ -65,6 +66,7 @@ def budget_tables(outcome: BudgetOutcome, place: int, named: Named) -> tuple[Rep
         cumulative_table(outcome, place, named),
         margins_table(outcome, named),
         ways_table(outcome, named),
+        chances_table(outcome),
         shares_table(outcome, place, named),
         slopes_table(outcome, place, named),
     )

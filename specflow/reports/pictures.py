@@ -12,6 +12,7 @@ from specflow.model.budget import Law
 from specflow.model.budget_outcome import BudgetOutcome, ChanceOutcome, QuantityOutcome
 from specflow.model.picture import Bar, ContributionBars, Distribution, LevelDiagram, Mark, Picture, Series
 from specflow.reports.budget import position_words
+from specflow.reports.chances import share_words
 from specflow.reports.figures import DASH, margin, rounded, with_unit
 
 Floats = NDArray[np.float64]
@@ -165,11 +166,4 @@ def _distribution(outcome: BudgetOutcome, one: ChanceOutcome, named: Named) -> D
 
 def probability_words(one: ChanceOutcome) -> str:
     """Return the joint probability, short; never 100 % or 0 % where a specimen says otherwise."""
-    if math.isnan(one.joint):
-        return DASH
-    shown = f"{100.0 * one.joint:.2f}"
-    if shown == "100.00" and one.joint < 1.0:
-        return "more than 99.99 %"
-    if shown == "0.00" and one.joint > 0.0:
-        return "less than 0.01 %"
-    return f"{shown} %"
+    return share_words(one.joint)

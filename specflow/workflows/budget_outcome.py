@@ -39,6 +39,7 @@ from specflow.budgets.forms import (
 )
 from specflow.budgets.image import mixers_of
 from specflow.budgets.root_sum import MOST_BEND
+from specflow.budgets.trials import percent_words
 from specflow.calculators.decibel import BOLTZMANN, T0
 from specflow.calculators.noise_cascade import cumulative_noise_figure
 from specflow.errors import CalculationError
@@ -396,12 +397,11 @@ def _chance_ways(drawn: MonteCarloResult) -> list[WayOutcome]:
 def _short(found: Probability) -> str:
     if found.trials == 0:
         return ""
-    low, high = (f"{100 * end:.4g}" for end in (found.low, found.high))
-    return f"{100 * found.value:.4g} % ({low} to {high} %, sampling only)"
+    low, high = percent_words(found.low), percent_words(found.high)
+    return f"{percent_words(found.value)} % ({low} to {high} %, sampling only)"
 
 
 def _chance_way(parameter: str, one: ServedChance, drawn: MonteCarloResult) -> WayOutcome:
-    place = int(np.nanargmin(one.probability)) if not np.isnan(one.probability).all() else -1
     assumes = (
         f"{_ASSUMES[Way.MONTE_CARLO]}; {drawn.trials:,} trials, seed {drawn.seed}; margin that 99 % keep"
     )
@@ -411,7 +411,7 @@ def _chance_way(parameter: str, one: ServedChance, drawn: MonteCarloResult) -> W
         parameter=parameter,
         margin=one.quantiles[LOW_PART],
         margin_unit=one.margin_unit,
-        worst=place,
+        worst=one.place,
         probability=_short(one.joint),
         assumes=assumes,
     )

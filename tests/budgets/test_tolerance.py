@@ -13,6 +13,7 @@ from hypothesis import strategies as st
 from specflow.budgets import evaluate_budget, line_key, monte_carlo, rss, worst_case
 from specflow.budgets.draws import CHUNK, draws_of
 from specflow.budgets.evaluate import prepare
+from specflow.budgets.trials import percent_words
 from specflow.errors import CalculationError
 from specflow.model.budget import Budget, BudgetLine, Correlation
 from specflow.parameters import load_dictionary
@@ -192,6 +193,22 @@ def test_one_specimen_serves_all_points_so_that_probabilities_are_not_multiplied
     assert served.probability == pytest.approx(0.75, abs=0.01)
     assert served.joint.value == pytest.approx(served.probability[0])
     assert served.joint.low < served.joint.value < served.joint.high
+
+
+def test_where_every_specimen_meets_the_limit_the_point_nearest_to_it_is_named() -> None:
+    drift = {"dimension": "frequency", "dimension_unit": "GHz", "slope": -0.5, "reference": 18.0}
+    more = {"gain": limits(1.0) | {"drifts": (drift,)}}
+    budget = a_chain({"block": "A", "gain": 10.0, "more": more}, parameter="gain", conditions="CS")
+    points = a_conditions_set("CS", a_dimension(values=(18.0, 19.0, 20.0)))
+    snapshot = project_of(budget, points, limit=at_least(5))
+    served = monte_carlo(budget, snapshot, DICTIONARY, trials=1000, seed=3).of("gain").served[0]
+    assert list(served.probability) == [1.0, 1.0, 1.0]
+    assert served.place == 2
+
+
+def test_a_share_that_is_not_all_never_reads_100() -> None:
+    assert percent_words(1.0) == "100" and percent_words(0.5) == "50"
+    assert percent_words(0.99999) == "99.999"
 
 
 @pytest.mark.parametrize("count", [4, 64])

@@ -21,6 +21,7 @@ from specflow.reports.budget import (
     worst_words,
 )
 from specflow.reports.budget_list import budgets_table
+from specflow.reports.chances import chances_table, share_words
 from specflow.workflows.budget_outcome import HowToCompute, budget_outcome
 from specflow.workflows.show_budget import outcomes_of
 from tests import receiver
@@ -132,7 +133,14 @@ def test_the_report_says_where_it_is_worst_and_what_was_assumed() -> None:
     assert facts["Worst point"] == worst_words(OUTCOME)
     assert "sampling only" in facts["Probability that a specimen meets all"]
     assert any("noise of the loss" in value for name, value in report.facts if name == "Assumed")
-    assert [one.key for one in report.tables] == ["cumulative", "margins", "ways", "shares", "slopes"]
+    assert [one.key for one in report.tables] == [
+        "cumulative",
+        "margins",
+        "ways",
+        "chances",
+        "shares",
+        "slopes",
+    ]
 
 
 def test_the_list_has_every_budget_and_says_why_one_cannot_be_evaluated() -> None:
@@ -184,3 +192,27 @@ def test_a_tolerance_says_what_moves_together_and_what_by_itself() -> None:
     assert tolerance_words(a_budget_line(tolerance=tolerance, shared="per element")).endswith(
         "each element by itself"
     )
+
+
+def test_the_probability_of_every_point_stands_beside_the_joint_one() -> None:
+    table = chances_table(OUTCOME)
+    assert column(table, "place") == list(OUTCOME.places)
+    one = OUTCOME.chances[0]
+    found = numbers(table, one.requirement.id)
+    assert found == [pytest.approx(100 * share) for share in one.probability]
+    assert one.joint <= min(one.probability)
+    assert "may not be multiplied" in table.intro
+    assert "chances" in [one.key for one in budget_report(OUTCOME, 0, NAMED).tables]
+
+
+def test_without_a_monte_carlo_run_there_is_no_table_of_probabilities() -> None:
+    assert not chances_table(pozar()).rows
+
+
+def test_a_share_of_specimens_never_reads_all_or_none_where_one_says_otherwise() -> None:
+    assert [share_words(one) for one in (1.0, 0.99999, 0.00001, 0.0)] == [
+        "100.00 %",
+        "more than 99.99 %",
+        "less than 0.01 %",
+        "0.00 %",
+    ]
