@@ -19,6 +19,7 @@ _GREEK = str.maketrans({"θ": "theta", "φ": "phi"})
 _LOCATIONS_HINT = "ambient, baseplate, case, junction or board"
 
 
+@lru_cache(maxsize=4096)
 def spelling_key(text: str) -> str:
     """Return what two spellings of a dimension are compared by: no case, no unit in brackets, no punctuation,
     angles spelled out.

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import re
 from datetime import date, datetime
+from functools import lru_cache
 
 _LAYOUTS = ("%Y-%m-%d", "%Y/%m/%d", "%Y%m%d", "%d %B %Y", "%d %b %Y", "%d-%b-%Y", "%B %d, %Y", "%b %d, %Y",
             "%b %d %Y", "%B %d %Y", "%Y.%m.%d")  # fmt: skip
@@ -24,6 +25,7 @@ def day_first(key: str, text: str) -> str:
     return f"{found['year']}-{int(found['month']):02}-{int(found['day']):02}" if found else text
 
 
+@lru_cache(maxsize=4096)
 def read_day(text: str) -> date | None:
     """Read 2026-03-02, 2 March 2026, 2026-03-02T14:30, 10/20/2023 3:27:51 PM; None for 02/03/2026 and anything else.
 

@@ -71,6 +71,8 @@ def _degrees(columns: Columns, name: str) -> np.ndarray[tuple[int, ...], np.dtyp
 
 def cosine_of(header: str, headers: list[str]) -> str:
     """The dimension of a column headed "u" or "v" in a table that has both; "" for any other."""
-    plain = [re.sub(r"[\s_]+", "", one.casefold()) for one in headers]
     own = re.sub(r"[\s_]+", "", header.casefold())
-    return f"direction_{own}" if own in ("u", "v") and {"u", "v"} <= set(plain) else ""
+    if own not in ("u", "v"):
+        return ""
+    plain = {re.sub(r"[\s_]+", "", one.casefold()) for one in headers}
+    return f"direction_{own}" if {"u", "v"} <= plain else ""

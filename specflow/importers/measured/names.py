@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Mapping
+from functools import lru_cache
 
 from specflow.conditions import find_dimension
 from specflow.importers.measured.header_text import read_header
@@ -68,11 +69,13 @@ def _plain(text: str) -> str:
 _SPELLINGS = {_plain(spelling): name for name, spellings in NAMES.items() for spelling in spellings}
 
 
+@lru_cache(maxsize=4096)
 def name_of(key: str) -> str:
     """Return which of ``NAMES`` a key of a file means, "" if none."""
     return _SPELLINGS.get(_plain(key)) or _SPELLINGS.get(_plain(read_header(key).name), "")
 
 
+@lru_cache(maxsize=4096)
 def canonical(key: str) -> str:
     """Return what a key of a file means: one of ``NAMES``, a dimension, or "" when it is neither."""
     name = name_of(key)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import re
 from dataclasses import dataclass
+from functools import lru_cache
 
 from specflow.importers.measured.header_text import HeaderText
 from specflow.importers.measured.result import Role
@@ -65,6 +66,7 @@ class UncertaintyWords:
     is_bare: bool
 
 
+@lru_cache(maxsize=4096)
 def role_of_words(parts: HeaderText) -> tuple[Role, str] | None:
     """Return the role that the header's words say and the reason; None when they say none."""
     whole = _ROLES.get(_plain(parts.text))  # P/F is a verdict, not a P in farads
@@ -81,6 +83,7 @@ def role_of_words(parts: HeaderText) -> tuple[Role, str] | None:
     return None
 
 
+@lru_cache(maxsize=4096)
 def uncertainty_of(parts: HeaderText) -> UncertaintyWords | None:
     """Return what a header says of an uncertainty; None for any other header.
 

@@ -23,6 +23,7 @@ Places = NDArray[np.intp]
 
 _AGREE = 0.2  # of their mean: how far two neighbours may be apart
 _MATCH = 0.1  # how near a reading, put right, must come to what its neighbours say
+_EVEN = 6.0  # 10 ** (1 - 2 * _MATCH) and a margin
 _FAR = 8.0  # times the scatter of the neighbours
 _WINDOW = 4  # neighbours that are looked at, on either side
 _SMALL = 6  # a group of so few is compared as a whole
@@ -51,12 +52,23 @@ def find_slips(values: Floats, unit: str, conditions: Columns, items: TextColumn
         return []
     is_level = parse_unit(unit).is_log and parse_unit(unit).kind is Kind.LEVEL
     turns = parse_unit(unit).dimension == "angle" or unit in ("deg", "rad")
+    if _is_even(values[known], is_level):
+        return []
     axis = _axis(conditions, known)
     found: dict[int, Slip] = {}
     for grouped in _groupings(conditions, items, axis, known):
         for slip in _along(values, grouped, is_level, turns):
             found.setdefault(slip.place, slip)
     return [found[place] for place in sorted(found)]
+
+
+def _is_even(values: Floats, is_level: bool) -> bool:
+    """Whether all readings have one sign and are so near to each other that none can be a candidate, however they lie:
+    no two are six times, or as levels nearly 30 dB, apart (``_candidates`` asks for 10 ** 0.8, and 29 dB)."""
+    low, high = float(values.min()), float(values.max())
+    if low <= 0 <= high or (is_level and high - low >= _UNIT_STEP_DB - 2 * _LEVEL_MATCH_DB):
+        return False
+    return max(abs(low), abs(high)) < _EVEN * min(abs(low), abs(high))
 
 
 def _axis(conditions: Columns, known: Places) -> str:

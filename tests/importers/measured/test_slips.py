@@ -10,7 +10,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 from numpy.typing import NDArray
 
-from specflow.importers.measured.slips import Slip, find_slips
+from specflow.importers.measured.slips import Slip, _candidates, _is_even, find_slips
 from specflow.importers.measurements import read_measurements
 from specflow.model.columns import Columns, TextColumn
 from specflow.parameters import load_dictionary
@@ -133,3 +133,17 @@ def test_many_in_one_column_are_counted(tmp_path: Path) -> None:
     rows = [["f (GHz)", "Gain (dB)"], *([27 + step / 100, value] for step, value in enumerate(values))]
     found = [one.message for one in measure(book(tmp_path / "a.xlsx", rows)).findings]
     assert len(found) == 6 and "2 more readings look like a slip" in found[-1]
+
+
+@given(
+    st.lists(st.floats(1.0, 8.0), min_size=3, max_size=12)
+    | st.lists(st.floats(-60, -20), min_size=3, max_size=12)
+    | st.lists(st.sampled_from([100.0, 200.0, 590.0, 1000.0]), min_size=3, max_size=12),
+    st.booleans(),
+)
+def test_readings_that_are_passed_over_at_once_have_no_candidate(
+    readings: list[float], is_level: bool
+) -> None:
+    run = np.array(readings)
+    if _is_even(run, is_level):
+        assert _candidates(run, is_level) == []
