@@ -10,6 +10,7 @@ from specflow.model.report import CellTone, ReportCell, ReportColumn, ReportRow,
 from specflow.workflows.attach import AttachPreview
 from specflow.workflows.attach_derived import PlannedTable, planned_result
 
+_FEW_SETTINGS = 3
 _QUIET = (Role.INDEX, Role.REMARK, Role.NOT_READ, Role.STATED_LIMIT, Role.STATED_VERDICT)
 
 
@@ -101,6 +102,7 @@ def _table_json(preview: AttachPreview, place: int, table: MeasuredTable) -> dic
         ],
         "rejected": [one.model_dump() for one in table.rejected],
         "notes": list(table.notes),
+        "not_used": list(table.unused),
         "derived": [
             {"quantity": one.plan.quantity.model_dump(), "law": one.plan.law, "of": one.plan.shown, "for": one.plan.why,
              "result": planned_result(one)}
@@ -127,9 +129,17 @@ def _recognised(preview: AttachPreview, place: int, table: MeasuredTable) -> Rep
         )
         for one in table.recognised
     ]
-    intro = "; ".join(facts) + "".join(f"\n· {note}" for note in table.notes)
+    intro = "; ".join(facts) + "".join(f"\n· {note}" for note in (*table.notes, *_unused(table.unused)))
     return _table("columns", f"{where}: {table.title or 'table'}", intro,
                   ("Cell", "Header", "Role", "Meaning", "Why"), rows)  # fmt: skip
+
+
+def _unused(settings: Sequence[str]) -> list[str]:
+    """One line about the settings from which nothing was taken: all of them where they are few, else their keys."""
+    if len(settings) <= _FEW_SETTINGS:
+        return [f"not used: {one}" for one in settings]
+    keys = ", ".join(one.partition(": ")[2].partition(" = ")[0] for one in settings)
+    return [f"{len(settings)} settings beside the table were not used: {keys} (their values: --json)"]
 
 
 def _tone(role: Role) -> CellTone:

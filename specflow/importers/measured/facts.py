@@ -10,6 +10,7 @@ from datetime import date, datetime
 from specflow.importers.measured.header_text import known_unit, read_header
 from specflow.importers.readers import Grid, OddKind, Value, is_blank, looks_numeric
 
+_PAIR_AMONG_OTHERS = re.compile(r"\s*(?P<key>[^\W\d][^:=]{0,40}?)\s*[:=]\s*(?P<value>[^:=]*\S)\s*")
 _PAIR = re.compile(r"^\s*(?P<key>[^:=]{1,60}?)\s*[:=]\s*(?P<value>.*)$", re.DOTALL)
 
 
@@ -88,7 +89,10 @@ def _facts(grid: Grid, row: int, cells: list[tuple[int, Value]]) -> Iterator[Fac
         if not isinstance(value, str) or looks_numeric(value):
             continue
         pair = _PAIR.match(value)
-        if pair and pair["value"]:
+        several = _several(value)
+        if several:
+            yield from (Fact(key, text, grid.address(row, column), row) for key, text in several)
+        elif pair and pair["value"]:
             yield Fact(pair["key"].strip(), " ".join(pair["value"].split()), grid.address(row, column), row)
         elif place < len(cells) and (pair or _is_key(value, cells[place][1], len(cells))):
             key = pair["key"].strip() if pair else value.strip()
@@ -99,6 +103,13 @@ def _facts(grid: Grid, row: int, cells: list[tuple[int, Value]]) -> Iterator[Fac
                 text = f"{text} {cells[place][1]}"
                 place += 1
             yield Fact(key, text, grid.address(row, there), row)
+
+
+def _several(text: str) -> list[tuple[str, str]]:
+    """The pairs of a line that states several: "Cut 1, elevation = 0 deg, frequency = 28 GHz"; [] of any other."""
+    pairs = [_PAIR_AMONG_OTHERS.fullmatch(part) for part in re.split(r"[,;]\s+", text)]
+    found = [(pair["key"], " ".join(pair["value"].split())) for pair in pairs if pair]
+    return found if len(found) > 1 and all(pairs[1:]) else []
 
 
 def _is_key(text: str, beside: Value, cells: int) -> bool:

@@ -60,7 +60,8 @@ class MeasuredTable:
 
     ``document`` and ``columns`` are None while there are questions, or when no row is left. ``rejected`` are cells that
     hold something which cannot be evidence; long runs of one reason are one entry, ``rejected_cells`` counts the cells.
-    ``blank`` counts cells without a result, by reason. ``notes`` tell what was done on the way; ``findings`` doubt
+    ``blank`` counts cells without a result, by reason. ``notes`` tell what was done on the way; ``unused``
+    are the settings beside the table from which nothing was taken ("B1: Type = XSA-7"); ``findings`` doubt
     readings that were taken as they stand. ``mapping`` is the
     TOML of the mapping that was used, ``mapping_from`` says where it came from ("" when none was needed). ``plans`` are
     laws to be applied to it once it is stored, ``asked`` those that its mapping asks for.
@@ -78,6 +79,7 @@ class MeasuredTable:
     rejected_cells: int = 0
     blank: Mapping[str, int] = field(default_factory=dict)
     notes: tuple[str, ...] = ()
+    unused: tuple[str, ...] = ()
     findings: tuple[Finding, ...] = ()
     mapping: str = ""
     mapping_from: str = ""

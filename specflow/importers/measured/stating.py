@@ -70,7 +70,8 @@ def collect(
 
     ``own_dimensions`` are those of the project; the person may state them although no dictionary knows them.
     """
-    facts, sheet_facts = tuple(facts), tuple(sheet_facts)
+    facts = tuple(dict.fromkeys(facts))  # a block of numbers brings those above it, and so does the sheet
+    sheet_facts = tuple(fact for fact in dict.fromkeys(sheet_facts) if fact not in facts)
     collector = _Collector(own_dimensions, is_export((*facts, *sheet_facts)))
     for key, text in person.items():
         collector.take(key, text, PERSON, "")

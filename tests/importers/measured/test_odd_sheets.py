@@ -187,7 +187,7 @@ TAKEN = {
             ["EIRP (dBm)"], [40, 41, 42], above=[["RBW", "1 MHz"], ["Ref", "0 dBm"], ["Attenuation", "20 dB"]]
         ),
         {"EIRP": [40, 41, 42]},
-        words=["not used: B3: Attenuation = 20 dB"],
+        words=["B3: Attenuation = 20 dB"],
     ),
     "a row without its bandwidth": Taken(
         [["f (MHz)", "Spurious (dBm)", "RBW"], [100, -60, "100 kHz"], [200, -61, None]],
@@ -344,7 +344,7 @@ def read(path: Path, rows: Rows, said: Mapping[str, str]) -> MeasuredTable:
 
 def told(table: MeasuredTable) -> str:
     """All that is said about a table and its columns."""
-    lines = [*table.notes, *(one.message for one in table.findings)]
+    lines = [*table.notes, *table.unused, *(one.message for one in table.findings)]
     lines += [f"{one.cell} {one.meaning} {one.reason}" for one in table.recognised]
     return "\n".join(lines)
 

@@ -1,0 +1,36 @@
+"""Text exports of instruments and simulators: what is taken, what is asked. All numbers are invented."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+from tests.importers.measured.make import low, measure, one_table, taken, text
+
+
+def test_settings_that_say_nothing_of_the_readings_are_named_once(tmp_path: Path) -> None:
+    lines = ["Type;XA-7;", "Version;3.20;", "Span;400;Hz", "Sweep Count;100;", "RBW;1000000;Hz", "x-Unit;Hz;"]
+    rows = [f"{27.8e9 + 1e7 * row:.0f};{-60 + row};" for row in range(6)]
+    table = one_table(text(tmp_path / "a.dat", "\n".join([*lines, *rows])))
+    assert table.unused == (
+        "B1: Type = XA-7",
+        "B2: Version = 3.20",
+        "B3: Span = 400 Hz",
+        "B4: Sweep Count = 100",
+    )
+    assert not [note for note in table.notes if "Version" in note]
+
+
+def test_a_line_may_state_several_conditions(tmp_path: Path) -> None:
+    lines = []
+    for cut, fixed in (("Azimuth", "Elevation"), ("Elevation", "Azimuth")):
+        lines += [f"{cut} cut, {fixed} = 0 deg, Frequency = 28 GHz", f"{cut} (deg)\tGain (dBi)"]
+        lines += [f"{angle}\t{30 - abs(angle)}" for angle in (-10, 0, 10)] + [""]
+    tables = measure(text(tmp_path / "cuts.txt", "\n".join(lines))).tables
+    assert [low(taken(table), "Gain") for table in tables] == [
+        [20, 30, 20],
+        [20, 20],
+    ]  # both have the same middle
+    across, along = (table.columns.conditions.numeric for table in tables if table.columns is not None)
+    assert across["azimuth"].tolist() == [-10, 0, 10] and across["elevation"].tolist() == [0, 0, 0]
+    assert along["azimuth"].tolist() == [0, 0] and along["elevation"].tolist() == [-10, 10]
+    assert set(across["frequency"].tolist()) == {28}
