@@ -33,7 +33,7 @@ from specflow.budgets.evaluate import evaluate_budget
 from specflow.budgets.laws import quantities
 from specflow.budgets.ranges import ServedRange
 from specflow.budgets.required import Required, required_conditions
-from specflow.budgets.result import BudgetResult, OutputResult, Served
+from specflow.budgets.result import BudgetResult, OutputResult
 from specflow.budgets.root_sum import OutputRss, Rss, rss
 from specflow.budgets.shares import OutputShares, shares_of
 from specflow.budgets.slopes import OutputSlopes, slopes_of
@@ -61,7 +61,6 @@ __all__ = [
     "ReadLine",
     "Required",
     "Rss",
-    "Served",
     "ServedChance",
     "ServedRange",
     "WorstCase",

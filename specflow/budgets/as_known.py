@@ -17,10 +17,11 @@ from specflow.budgets.evaluate import nominal_result
 from specflow.budgets.knowledge import Knowledge, KnownLine, best_known
 from specflow.budgets.probe import Probe, Target
 from specflow.budgets.ranges import slopes_at
-from specflow.budgets.result import BudgetResult, Served
+from specflow.budgets.result import BudgetResult
 from specflow.budgets.spread import correlation_matrix
 from specflow.model.base import code_key
 from specflow.model.budget import Budget
+from specflow.model.budget_outcome import ServedOutcome
 from specflow.model.snapshot import Snapshot
 from specflow.parameters import Dictionary
 from specflow.statistics.prediction import effective_freedom, one_sided_quantile, probability_below
@@ -40,7 +41,7 @@ class KnownServed:
     are kept at that place. Never multiply these over places: one system meets all places or does not.
     """
 
-    served: Served
+    served: ServedOutcome
     spread: Floats
     freedom: Floats
     predicted: Floats
@@ -130,7 +131,7 @@ def with_known(
 def _served(
     probe: Probe,
     target: Target,
-    one: Served,
+    one: ServedOutcome,
     result: BudgetResult,
     lines: Sequence[KnownLine],
     confidence: float,

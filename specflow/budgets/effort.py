@@ -43,6 +43,7 @@ from specflow.units import parse_unit
 
 Floats = NDArray[np.float64]
 HARDEST, EASIEST = 30.0, -15.0
+_GAIN_STEP = 0.5
 _PER_DB = math.log(10.0) / 10.0
 _ROUNDS = 25
 _BINDS = 1e-4
@@ -132,6 +133,16 @@ class _Task:
     first: Mapping[BlockParameter, Allotment]
     ends: Sequence[Ends | None]
     notes: tuple[str, ...]
+
+    @property
+    def is_gain(self) -> NDArray[np.bool_]:
+        """Which of them are gains that carry a share, not free ones."""
+        lines = self.probe.chain.lines
+        return np.array([lines[number].role.figure == "gain" for number in self.numbers]) & ~self.is_free
+
+    def together(self, amount: float, gain: float) -> Floats:
+        """Return all parts harder by the same amount, gains by their own; free ones stay."""
+        return np.where(self.is_free, 0.0, np.where(self.is_gain, gain, amount))
 
     def efforts(self, harder: Floats) -> Floats:
         """Return the effort of every line."""
@@ -244,21 +255,38 @@ def _wants_more(probe: Probe, kind: str) -> bool:
 
 
 def _start(task: _Task) -> Floats:
-    """Return a start that meets all limits: all parts but free gains harder by the same amount."""
+    """Return a start that meets all limits: shared gains moved together, all other parts harder by the same amount.
 
-    def at(amount: float) -> Floats:
-        return np.where(task.is_free, 0.0, amount)
-
+    Gains are apart: more of it meets a limit on gain and breaks one on distortion. Free gains stay where they are.
+    """
+    gain = _suiting_gain(task)
     low, high = EASIEST, HARDEST
-    if task.margins(at(low)).min() >= 0:
-        return at(low)
-    left = task.margins(at(high))
+    if task.margins(task.together(low, gain)).min() >= 0:
+        return task.together(low, gain)
+    left = task.margins(task.together(high, gain))
     if left.min() < 0 and not task.is_free.any():
-        _refuse(task, left, f"with every shared block {HARDEST:g} dB harder than its estimate")
+        moved = f" and their gains moved by {gain:+g} dB" if task.is_gain.any() else ""
+        _refuse(task, left, f"with every shared block {HARDEST:g} dB harder than its estimate{moved}")
     for _ in range(50):
         middle = (low + high) / 2.0
-        low, high = (low, middle) if task.margins(at(middle)).min() >= 0 else (middle, high)
-    return at(high)
+        is_met = task.margins(task.together(middle, gain)).min() >= 0
+        low, high = (low, middle) if is_met else (middle, high)
+    return task.together(high, gain)
+
+
+def _suiting_gain(task: _Task) -> float:
+    """Return the smallest step of all shared gains with which hard parts meet all limits, else the best one."""
+    if not task.is_gain.any():
+        return 0.0
+    steps = sorted(np.arange(EASIEST, HARDEST + _GAIN_STEP, _GAIN_STEP), key=abs)
+    best, most = 0.0, -math.inf
+    for step in steps:
+        least = float(task.margins(task.together(HARDEST, float(step))).min())
+        if least > most:
+            best, most = float(step), least
+        if most >= 0:
+            break
+    return best
 
 
 def _refuse(task: _Task, margins: Floats, when: str) -> NoReturn:

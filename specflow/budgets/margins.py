@@ -10,11 +10,11 @@ from numpy.typing import NDArray
 
 from specflow.budgets.outputs import Output
 from specflow.budgets.required import Required
-from specflow.budgets.result import Served
 from specflow.errors import DocumentError, UnitError
 from specflow.limits import LimitContext, evaluate_limit
 from specflow.model.base import code_key
 from specflow.model.budget import Budget
+from specflow.model.budget_outcome import ServedOutcome
 from specflow.model.declared import DeclaredValue
 from specflow.model.parameter import Parameter
 from specflow.model.requirement import Requirement
@@ -56,12 +56,12 @@ class Bar:
             margin[missing] = np.nan
         return margin
 
-    def held(self, result: Floats) -> Served:
+    def held(self, result: Floats) -> ServedOutcome:
         """Return the requirement held against a result (n,)."""
         margin = self.margin(result)
         known = np.flatnonzero(~np.isnan(margin))
         worst = int(known[np.argmin(margin[known])]) if len(known) else -1
-        return Served(
+        return ServedOutcome(
             self.requirement,
             self.unit,
             self.margin_unit,

@@ -12,7 +12,7 @@ from specflow.budgets.chain import Chain
 from specflow.budgets.figures import figures_of, line_slopes
 from specflow.budgets.margins import Bar
 from specflow.budgets.outputs import Output
-from specflow.budgets.result import Served
+from specflow.model.budget_outcome import ServedOutcome
 
 Floats = NDArray[np.float64]
 
@@ -21,8 +21,8 @@ Floats = NDArray[np.float64]
 class ServedRange:
     """A requirement held against the extremes: margins at the adverse and at the favourable end, each (n,)."""
 
-    adverse: Served
-    favourable: Served
+    adverse: ServedOutcome
+    favourable: ServedOutcome
 
 
 def value_at(chain: Chain, output: Output, values: Sequence[Floats]) -> Floats:

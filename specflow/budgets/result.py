@@ -13,44 +13,9 @@ from specflow.budgets.outputs import Output
 from specflow.budgets.required import Required
 from specflow.model.base import code_key
 from specflow.model.budget import Budget, BudgetPosition
-from specflow.model.requirement import Requirement
+from specflow.model.budget_outcome import ServedOutcome
 
 Floats = NDArray[np.float64]
-
-
-@dataclass(frozen=True, slots=True, eq=False)
-class Served:
-    """One requirement that a budget serves, held against the result at every place of evaluation.
-
-    ``lower``, ``upper`` (n,) in ``unit``, the unit of the limit: ±inf where that side has none. ``result`` (n,) is in
-    the same unit. ``margin`` (n,) in ``margin_unit`` is the distance to the limit less the ``reserve``, positive is
-    good, NaN where nothing is required or the limit is not known (``why``). ``worst`` is the place with the smallest
-    margin, -1 where there is none.
-    """
-
-    requirement: Requirement
-    unit: str
-    margin_unit: str
-    lower: Floats
-    upper: Floats
-    result: Floats
-    margin: Floats
-    reserve: float
-    reserve_holder: str
-    worst: int
-    why: str = ""
-
-    @property
-    def smallest_margin(self) -> float:
-        """The margin at the worst place, NaN where there is none."""
-        return float(self.margin[self.worst]) if self.worst >= 0 else float("nan")
-
-    @property
-    def closes(self) -> bool | None:
-        """Whether the limit is kept everywhere with the reserve; None where it is not known at some required place."""
-        if self.worst >= 0 and self.smallest_margin < 0:
-            return False
-        return None if self.worst < 0 or self.why else True
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -66,7 +31,7 @@ class OutputResult:
     law: str
     result: Floats
     cumulative: Floats
-    served: tuple[Served, ...]
+    served: tuple[ServedOutcome, ...]
     output: Output
 
 
@@ -97,12 +62,12 @@ class BudgetResult:
         raise KeyError(parameter)
 
     @property
-    def served(self) -> tuple[Served, ...]:
+    def served(self) -> tuple[ServedOutcome, ...]:
         """All requirements that the budget serves."""
         return tuple(one for output in self.outputs for one in output.served)
 
     @property
-    def worst(self) -> Served | None:
+    def worst(self) -> ServedOutcome | None:
         """The requirement with the smallest margin of all; None where no margin is known."""
         known = [one for one in self.served if one.worst >= 0]
         return min(known, key=lambda one: one.smallest_margin, default=None)

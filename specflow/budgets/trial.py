@@ -11,10 +11,10 @@ from specflow.budgets.closure import closure_of_children
 from specflow.budgets.corners import worst_case
 from specflow.budgets.evaluate import nominal_result
 from specflow.budgets.probe import Probe
-from specflow.budgets.result import Served
 from specflow.errors import SpecflowError
 from specflow.model.base import code_key
 from specflow.model.budget import Budget
+from specflow.model.budget_outcome import ServedOutcome
 from specflow.model.requirement import Requirement
 from specflow.model.snapshot import Snapshot
 from specflow.parameters import Dictionary
@@ -25,7 +25,7 @@ Children = Mapping[str, Sequence[Requirement]]
 
 @dataclass(frozen=True, slots=True)
 class LimitState:
-    """What is left of one limit: its smallest margin in ``unit`` and where; ``closes`` as ``Served.closes``.
+    """What is left of one limit: its smallest margin in ``unit`` and where; ``closes`` as ``ServedOutcome.closes``.
 
     ``worst_case`` is the smallest margin with every line at the end of its tolerance that hurts.
     """
@@ -142,7 +142,7 @@ def _adverse(budget: Budget, snapshot: Snapshot, dictionary: Dictionary) -> Mapp
     return {one.requirement.id: one.smallest_margin for one in served}
 
 
-def _limit(one: Served, probe: Probe, worst: float) -> LimitState:
+def _limit(one: ServedOutcome, probe: Probe, worst: float) -> LimitState:
     words = probe.words(one.worst) if one.worst >= 0 else ""
     return LimitState(one.requirement.id, one.smallest_margin, one.margin_unit, words, one.closes, worst)
 

@@ -65,9 +65,12 @@ class LineOutcome:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class ServedOutcome:
-    """One served requirement held against the result at every place; fields as in a budget's own result.
+    """One requirement that a budget serves, held against the result at every place of evaluation.
 
-    ``margin`` is NaN where nothing is required or the limit is not known (``why``); ``worst`` is -1 where none is.
+    ``lower``, ``upper`` (n,) in ``unit``, the unit of the limit: ±inf where that side has none. ``result`` (n,) is in
+    the same unit. ``margin`` (n,) in ``margin_unit`` is the distance to the limit less the ``reserve``, positive is
+    good, NaN where nothing is required or the limit is not known (``why``). ``worst`` is the place with the smallest
+    margin, -1 where there is none.
     """
 
     requirement: Requirement
@@ -86,6 +89,13 @@ class ServedOutcome:
     def smallest_margin(self) -> float:
         """The margin at the worst place, NaN where there is none."""
         return float(self.margin[self.worst]) if self.worst >= 0 else float("nan")
+
+    @property
+    def closes(self) -> bool | None:
+        """Whether the limit is kept everywhere with the reserve; None where it is not known at some required place."""
+        if self.worst >= 0 and self.smallest_margin < 0:
+            return False
+        return None if self.worst < 0 or self.why else True
 
 
 @dataclass(frozen=True, slots=True, eq=False)

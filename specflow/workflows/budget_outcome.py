@@ -14,7 +14,6 @@ from specflow.budgets import (
     Probability,
     ReadLine,
     Rss,
-    Served,
     ServedChance,
     ServedRange,
     WorstCase,
@@ -180,7 +179,7 @@ def _nominal(result: BudgetResult) -> BudgetOutcome:
                 law=one.law,
                 result=one.result,
                 cumulative=one.cumulative,
-                served=tuple(_served(found) for found in one.served),
+                served=one.served,
                 slopes=np.broadcast_to(slopes[one.parameter], (len(result.chain.lines), size)),
                 shares=None if shared is None else shared.shares,
                 shared="" if shared is None else shared.of,
@@ -250,22 +249,6 @@ def _line(read: ReadLine, result: BudgetResult) -> LineOutcome:
     )
 
 
-def _served(one: Served) -> ServedOutcome:
-    return ServedOutcome(
-        requirement=one.requirement,
-        unit=one.unit,
-        margin_unit=one.margin_unit,
-        lower=one.lower,
-        upper=one.upper,
-        result=one.result,
-        margin=one.margin,
-        reserve=one.reserve,
-        reserve_holder=one.reserve_holder,
-        worst=one.worst,
-        why=one.why,
-    )
-
-
 def _source(result: BudgetResult) -> Floats | None:
     """Return the noise temperature of what feeds a cascade: its antenna's line, the budget's own, else 290 K."""
     if "noise_figure" not in result.figures.arrays:
@@ -309,7 +292,7 @@ def _at(values: Floats, place: int) -> float:
 
 
 def _way(
-    way: Way, parameter: str, one: ServedOutcome | Served, low: float, high: float, assumes: str = ""
+    way: Way, parameter: str, one: ServedOutcome, low: float, high: float, assumes: str = ""
 ) -> WayOutcome:
     return WayOutcome(
         way=way,
