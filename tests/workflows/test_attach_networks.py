@@ -230,7 +230,7 @@ def test_active_reflection_over_scan_is_derived_from_all_entries_and_again(store
         "R-AR", block="FIL", quantity=a_quantity("active_reflection"), limit=at_most(10), conditions="ARRAY"
     )
     store.apply(adding(conditions, requirement, an_activity("R-AR")), by="A. B.")
-    said = {"block": "FIL", "item": "FIL-7", "spacing": "40 mm", **PORTS}
+    said = {"block": "FIL", "item": "FIL-7", "spacing": "40 mm", "reference": "comments", **PORTS}
     done = attached(store, DATA / "ten_port_sim.s10p", **said)
     assert list(done.tables) == ["EV-1", "EV-2", "EV-3"]  # raw, active reflection, insertion loss
     snapshot = store.load()

@@ -272,8 +272,8 @@ class _Reading:
         notes = [*work.notes, *columns.notes, *self.settled.notes]
         if columns.is_noise:
             return tuple(notes)
-        ohms = ", ".join(f"{ohm:g}" for ohm in dict.fromkeys(network.reference_ohm.tolist()))
-        notes.insert(0, f"Touchstone {network.version}, {network.ports} ports, reference {ohms} ohm")
+        ports = f"{network.ports} port{'s' * (network.ports != 1)}"
+        notes.insert(0, f"Touchstone {network.version}, {ports}, reference {network.reference_words}")
         notes += [f"line {remark.line}: {remark.what}" for remark in network.remarks]
         notes += network.notes
         unused = [*self.facts.unused, *self.stated.unused]

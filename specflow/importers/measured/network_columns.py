@@ -105,8 +105,8 @@ def scattering_table(network: NetworkFile) -> NetworkTable:
 
 def _title(network: NetworkFile) -> str:
     """What the table is, with the reference impedance: gain and match mean something at it only."""
-    ohms = ", ".join(f"{ohm:g}" for ohm in dict.fromkeys(network.reference_ohm.tolist()))
-    return f"scattering parameters of {network.ports} port{'s' * (network.ports != 1)} at {ohms} ohm"
+    ports = f"{network.ports} port{'s' * (network.ports != 1)}"
+    return f"scattering parameters of {ports} at {network.reference_words}"
 
 
 def _entry_name(network: NetworkFile, i: int, j: int) -> str:

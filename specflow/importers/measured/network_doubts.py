@@ -1,7 +1,8 @@
-"""What is doubtful in a network, settled by what was said: x axis, order of the columns, format, unit of angles."""
+"""What is doubtful in a network, settled by what was said: x axis, order of columns, format, angles, reference."""
 
 from __future__ import annotations
 
+import re
 from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
 
@@ -18,7 +19,7 @@ from specflow.units import compatible, format_unit, parse_unit
 OPTION_LINE = "option line"
 
 #: What may be said of a network, beside what may be said of any table and "port N".
-NETWORK_KEYS = (OPTION_LINE, "x axis", "column order", "format", "angles", "derive", "spacing")
+NETWORK_KEYS = (OPTION_LINE, "x axis", "column order", "format", "angles", "reference", "derive", "spacing")
 
 _REMEDIES = {
     DoubtKind.X_AXIS: '--state "x axis=frequency" (or "frequency in GHz") if it is one, else its condition: '
@@ -26,6 +27,8 @@ _REMEDIES = {
     DoubtKind.COLUMN_ORDER: '--state "column order=format" if the file keeps to the format, "column order=comment" if '
     "the comment is right",
     DoubtKind.PAIR_FORMAT: "--state format=DB, MA or RI, as the numbers are meant",
+    DoubtKind.REFERENCE: '--state "reference=50 ohm" (one, or one for each port) as the entries are referred to it, or '
+    "--state reference=comments",
     DoubtKind.ANGLES: "--state angles=degrees, as the format has them, or --state angles=radians",
 }
 
@@ -50,11 +53,14 @@ class SettledNetwork:
 
 
 def settle(network: NetworkFile, said: Mapping[str, str]) -> SettledNetwork:
-    """Settle the doubts of a network by what was said (x axis, column order, format, angles); ask about the rest."""
+    """Settle the doubts of a network by what was said (x axis, column order, format ...); ask about the rest."""
     settled = SettledNetwork(network, Axis("frequency", network.axis_unit, "the option line"))
     text = said.get("format", "")
     if text:
         _settle_format(settled, text)
+    reference = said.get("reference", "")
+    if reference:
+        _settle_reference(settled, reference)
     angles = said.get("angles", "")
     if angles:
         _settle_angles(settled, angles)
@@ -71,6 +77,7 @@ def settle(network: NetworkFile, said: Mapping[str, str]) -> SettledNetwork:
             (DoubtKind.COLUMN_ORDER, order),
             (DoubtKind.PAIR_FORMAT, text),
             (DoubtKind.ANGLES, angles),
+            (DoubtKind.REFERENCE, reference),
         )
         if words
     }
@@ -101,6 +108,33 @@ def _settle_format(settled: SettledNetwork, text: str) -> None:
         f"the pairs were read as {meant.value}, as stated; the option line says {network.pair_format}"
     )
     settled.network = replace(network, pair_format=meant, recorded=recorded, s=recorded)
+
+
+def _settle_reference(settled: SettledNetwork, text: str) -> None:
+    """The entries stand as written; what is settled is the impedance at which they hold, which the title then says."""
+    network, words = settled.network, re.sub(r"\b(?:ohms?)\b|Ω|[,;]", " ", text.casefold()).split()
+    if words == ["comments"] and network.impedances is not None:
+        settled.network = replace(network, at_impedances=True)
+        settled.notes.append("the entries are referred to the impedances of the comments, as stated")
+        return
+    try:
+        ohms = [float(word) for word in words]
+    except ValueError:
+        ohms = []
+    if (
+        network.parameter != "S"
+        or len(ohms) not in (1, network.ports)
+        or not all(0 < ohm < 1e9 for ohm in ohms)
+    ):
+        what = f"{text!r} is no reference of the {network.parameter} parameters of {network.ports} ports"
+        settled.questions.append(Question("reference", "", what, _REMEDIES[DoubtKind.REFERENCE]))
+        return
+    stated = np.broadcast_to(np.asarray(ohms), (network.ports,)).copy()
+    noise = network.noise
+    if noise is not None and network.version.startswith("1"):  # where Rn is divided by the reference
+        noise = replace(noise, rn_unit_ohm=float(stated[0]))
+    settled.network = replace(network, reference_ohm=stated, noise=noise)
+    settled.notes.append(f"the entries are referred to {settled.network.reference_words}, as stated")
 
 
 def _settle_angles(settled: SettledNetwork, text: str) -> None:

@@ -65,7 +65,7 @@ def read_comments(comments: Sequence[Comment], shape: Shape) -> Told:
     outside = outside_data(comments, shape.lines)
     doubts = [*_column_doubts(outside, shape), *_axis_doubts(outside, shape)]
     remarks = [*_other_entry(outside, shape), *_ports_of_analyser(outside, shape)]
-    impedances = read_impedances(comments, shape, remarks)
+    impedances = read_impedances(comments, shape, remarks, doubts)
     names = _port_names(outside, shape.ports)
     return Told(tuple(doubts), tuple(remarks), names, impedances)
 

@@ -1,4 +1,4 @@
-"""Port impedances in comments of a Touchstone file: kept as facts, and said where they are not the reference."""
+"""Port impedances in comments of a Touchstone file: kept as facts, and doubted where they are not the reference."""
 
 from __future__ import annotations
 
@@ -7,7 +7,7 @@ from collections.abc import Iterator, Sequence
 
 import numpy as np
 
-from specflow.importers.readers.touchstone_network import Comment, Complexes, Remark
+from specflow.importers.readers.touchstone_network import Comment, Complexes, Doubt, DoubtKind, Remark
 from specflow.importers.readers.touchstone_shape import Shape, outside_data
 
 _IMPEDANCES = re.compile(r"^\s*port impedances?\s*:?(?P<rest>.*)$", re.IGNORECASE)
@@ -16,16 +16,25 @@ _ONE_IMPEDANCE = re.compile(
     r"(?:\s*ohms?|\s*Ω)?",
     re.IGNORECASE,
 )
+#: A reference that is off by this share is a mismatch of |S| 0.01, 40 dB (the difference by twice the mean).
+_FAR_OFF, _OFF = 0.02, 1e-3
 _NUMBER = re.compile(r"[-+]?\d+(?:\.\d*)?(?:[eE][-+]?\d+)?")
 
 
-def read_impedances(comments: Sequence[Comment], shape: Shape, remarks: list[Remark]) -> Complexes | None:
-    """Port impedances (n, p) that comments give for each frequency; a remark where they are not the reference."""
+def read_impedances(
+    comments: Sequence[Comment], shape: Shape, remarks: list[Remark], doubts: list[Doubt]
+) -> Complexes | None:
+    """Port impedances (n, p) that comments give for each frequency.
+
+    A doubt where they are far from the reference, a remark where they are not quite it.
+    """
     blocks = _impedance_blocks(comments)
     wanted = shape.ports
     usable = [(line, block) for line, block in blocks if len(block) in (wanted, 2 * wanted)]
     if not usable:
-        remarks += _single_impedances(outside_data(comments, shape.lines), shape)
+        for line, ohm in _single_impedances(outside_data(comments, shape.lines)):
+            away = np.abs(ohm - np.asarray(shape.reference)) / np.asarray(shape.reference)
+            _compare(line, float(away.min()), f"an impedance of {ohm:g} ohm", shape, remarks, doubts)
         return None
     values = np.array([_complex_list(block, wanted) for _, block in usable], np.complex128)
     line = usable[0][0]
@@ -36,9 +45,9 @@ def read_impedances(comments: Sequence[Comment], shape: Shape, remarks: list[Rem
         remarks.append(Remark(line, what, warns=True))
         return None
     away = np.abs(values - np.asarray(shape.reference)) / np.asarray(shape.reference)
-    if (away > 1e-3).any():
-        shown = ", ".join(f"port {port + 1} {_ohms(one)}" for port, one in enumerate(values[0][:4]))
-        remarks.append(Remark(line, _not_the_reference(f"port impedances ({shown}, ...)", shape), warns=True))
+    shown = ", ".join(f"port {port + 1} {_ohms(one)}" for port, one in enumerate(values[0][:4]))
+    shown += ", ..." if len(values) > 1 or wanted > 4 else ""
+    _compare(line, float(away.max()), f"port impedances ({shown})", shape, remarks, doubts)
     return np.broadcast_to(values, (len(shape.axis), wanted))
 
 
@@ -51,15 +60,23 @@ def _complex_list(block: list[float], wanted: int) -> Complexes:
     return value
 
 
+def _compare(
+    line: int, away: float, given: str, shape: Shape, remarks: list[Remark], doubts: list[Doubt]
+) -> None:
+    """Doubt the reference where comments give another one; say it where the other one is nearly the same."""
+    what = _not_the_reference(given, shape)
+    if away > _FAR_OFF and shape.parameter == "S":
+        doubts.append(Doubt(DoubtKind.REFERENCE, line, what))
+    elif away > _OFF:
+        remarks.append(Remark(line, f"{what}; they were read as written", warns=True))
+
+
 def _not_the_reference(what: str, shape: Shape) -> str:
     ohms = sorted(set(shape.reference))
     says = (
         f"the option line says R {ohms[0]:g}" if shape.reference_stated else "the file names no R (so 50 ohm)"
     )
-    return (
-        f"comments give {what}, {says}: the entries may be referred to the impedances of the comments; "
-        "they were read as written"
-    )
+    return f"comments give {what}, {says}: the entries may be referred to the impedances of the comments"
 
 
 def _ohms(value: complex) -> str:
@@ -82,8 +99,9 @@ def _impedance_blocks(comments: Sequence[Comment]) -> list[tuple[int, list[float
     return blocks
 
 
-def _single_impedances(comments: Sequence[Comment], shape: Shape) -> Iterator[Remark]:
+def _single_impedances(comments: Sequence[Comment]) -> Iterator[tuple[int, float]]:
+    """Impedances that comments name for the whole file, with their lines."""
     for comment in comments:
         match = _ONE_IMPEDANCE.search(comment.text)
-        if match and all(abs(float(match["ohm"]) - ohm) > 1e-3 * ohm for ohm in shape.reference):
-            yield Remark(comment.line, _not_the_reference(f"an impedance of {match['ohm']} ohm", shape), True)
+        if match:
+            yield comment.line, float(match["ohm"])

@@ -59,6 +59,7 @@ class DoubtKind(StrEnum):
     COLUMN_ORDER = "column order"
     PAIR_FORMAT = "format"
     ANGLES = "angles"
+    REFERENCE = "reference"
 
 
 @dataclass(frozen=True, slots=True)
@@ -145,7 +146,8 @@ class NetworkFile:
     as written, in ``pair_format`` (of Lower and Upper files mirrored), ``recorded`` the complex matrix they say and
     ``s`` the scattering matrix: the same for S files, converted for the others. ``[k, i, j]`` is from port j+1 to port
     i+1. ``reference_ohm`` (p,) real. ``starts`` (n,) and ``pair_places`` (p, p) give the offset of each number.
-    ``impedances`` (n, p) complex are those that comments give per frequency, or None.
+    ``impedances`` (n, p) complex are those that comments give per frequency, or None; ``at_impedances`` where a person
+    says that the entries are referred to them.
     """
 
     fingerprint: FileFingerprint
@@ -168,11 +170,20 @@ class NetworkFile:
     conversion: str = ""
     noise: NoiseBlock | None = None
     impedances: Complexes | None = None
+    at_impedances: bool = False
     comments: Sequence[Comment] = ()
     holes: Sequence[Hole] = ()
     doubts: Sequence[Doubt] = ()
     remarks: Sequence[Remark] = ()
     notes: Sequence[str] = field(default=())
+
+    @property
+    def reference_words(self) -> str:
+        """What the entries are referred to: "50 ohm", "50, 75 ohm", or the impedances of the comments with their range."""
+        if self.at_impedances and self.impedances is not None:
+            size = np.abs(self.impedances)
+            return f"the impedances of the comments ({size.min():.4g} to {size.max():.4g} ohm)"
+        return ", ".join(f"{ohm:g}" for ohm in dict.fromkeys(self.reference_ohm.tolist())) + " ohm"
 
     @property
     def ports(self) -> int:

@@ -32,6 +32,7 @@ from tests.builders import (
 DATA = Path(__file__).parents[2] / "data"
 SAID = {"block": "LNA", "item": "LNA-1"}
 PORTS = {"port 1": "input", "port 2": "output"}
+AT_PORTS = {"reference": "comments"}
 BAND = a_conditions_set("CS", a_dimension(span=Span(low=1.0, high=3.0, step=0.5), tolerance=0.0))
 ROWS = "1 0.1 0 2 0 0.01 0 0.2 0\n2 0.1 0 2 10 0.01 0 0.2 0\n3 0.1 0 2 20 0.01 0 0.2 0\n"
 
@@ -96,7 +97,7 @@ def test_no_raw_column_is_of_a_quantity_that_a_requirement_names(amplifier: Path
         ("transistor_noise.s2p", {}, 37 * 8),
         ("four_port_75ohm.s4p", {}, 205 * 32),
         ("splitter_25c.S3P", {"temperature": "case"}, 169 * 18),
-        ("ten_port_sim.s10p", {}, 11 * 200),
+        ("ten_port_sim.s10p", AT_PORTS, 11 * 200),
         ("lowpass_25c.s2p", {"temperature": "case"}, 2006 * 8),
         ("lowpass_125c.s2p", {"temperature": "case"}, 2006 * 8),
         ("mmwave_tx_140_220ghz.S2P", {}, 801 * 8),
@@ -110,7 +111,7 @@ def test_published_files_come_in_with_at_most_a_location_of_their_temperature(
 
 
 def test_rows_over_several_lines_keep_the_line_of_each_entry() -> None:
-    table = raw(DATA / "ten_port_sim.s10p")
+    table = raw(DATA / "ten_port_sim.s10p", **AT_PORTS)
     assert table.document is not None and table.columns is not None
     [column] = [one for one in table.document.values if one.name == "S10_10 magnitude"]
     line = int(table.columns.source_rows[0]) + column.lines_below
@@ -261,11 +262,22 @@ def test_another_format_is_asked_and_taken_as_told(tmp_path: Path) -> None:
     assert raw(path, format="dBm").questions
 
 
-def test_impedances_in_comments_that_are_not_the_reference_are_a_finding() -> None:
-    [finding] = read(DATA / "ten_port_sim.s10p").findings
-    assert (
-        "268.957769 ohm" in finding.message and "50 ohm" in finding.message and finding.severity == "warning"
-    )
+def test_impedances_in_comments_that_are_not_the_reference_are_asked(tmp_path: Path) -> None:
+    """The entries stand as written; a title that says 50 ohm would say more than the file does."""
+    array = DATA / "ten_port_sim.s10p"
+    [question] = raw(array).questions
+    assert question.header == "reference" and "268.957769 ohm" in question.what and "50 ohm" in question.what
+    assert raw(array, **AT_PORTS).title.endswith("at the impedances of the comments (131.1 to 461.8 ohm)")
+    assert raw(array, reference="50 ohm").title.endswith("of 10 ports at 50 ohm")
+    for wrong in ("50 75", "comment", "-50", "mood"):
+        [question] = raw(array, reference=wrong).questions
+        assert f"{wrong!r} is no reference" in question.what
+    path = tmp_path / "a.s2p"
+    path.write_text(f"! port impedance 75 ohm\n# GHz S MA\n{ROWS}")
+    assert [one.header for one in raw(path).questions] == ["reference"]
+    assert raw(path, reference="75").title.endswith("at 75 ohm")
+    assert raw(path, reference="50, 75 Ω").title.endswith("at 50, 75 ohm")
+    assert raw(path, **AT_PORTS).questions  # there is no list of impedances by frequency
 
 
 # --- what comments state
@@ -401,9 +413,9 @@ def test_active_reflection_needs_spacing_and_scan() -> None:
     frequency = a_dimension(span=Span(low=3.6, high=3.8, step=0.02), tolerance=0.0)
     conditions = a_conditions_set("ARRAY", frequency, scan)
     requirement = wanted("active_reflection").model_copy(update={"conditions": "ARRAY"})
-    bare = raw(DATA / "ten_port_sim.s10p", conditions, requirement)
+    bare = raw(DATA / "ten_port_sim.s10p", conditions, requirement, **AT_PORTS)
     assert any("spacing of the elements is not said" in note for note in bare.notes)
-    [plan] = raw(DATA / "ten_port_sim.s10p", conditions, requirement, spacing="40 mm").plans
+    [plan] = raw(DATA / "ten_port_sim.s10p", conditions, requirement, **AT_PORTS, spacing="40 mm").plans
     assert (plan.law, len(plan.values), plan.over) == ("active reflection", 200, "frequency: 3.6..3.8 GHz")
     assert dict(plan.settings) == {"spacing": "40 mm", "scan": "-60.0..60.0 deg step 5.0 deg"}
 

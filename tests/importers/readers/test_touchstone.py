@@ -91,8 +91,9 @@ def test_a_ten_port_with_impedances_in_comments() -> None:
     assert {name: db(network, name, 3.7e9) for name in facts} == facts
     assert network.impedances is not None
     assert np.round(network.impedances[0, :2], 6).tolist() == [268.957769, 134.456]
-    [warned] = [one for one in network.remarks if one.warns]
-    assert "268.957769 ohm" in warned.what and "no R (so 50 ohm)" in warned.what and warned.line == 55
+    [doubt] = network.doubts
+    assert (doubt.kind.value, doubt.line) == ("reference", 55)
+    assert "268.957769 ohm" in doubt.what and "no R (so 50 ohm)" in doubt.what
 
 
 @pytest.mark.parametrize(
@@ -431,10 +432,14 @@ def test_ports_of_the_analyser_are_said(tmp_path: Path) -> None:
     assert "port 1 is 3, port 2 is 1" in said.what and not network.doubts
 
 
-def test_an_impedance_in_a_comment_that_is_not_the_reference_is_said(tmp_path: Path) -> None:
+def test_an_impedance_in_a_comment_that_is_not_the_reference_is_doubted(tmp_path: Path) -> None:
     network = read_text(tmp_path, "! Z0 = 75 Ohm\n# GHz S RI R 50\n1 1 0\n", "a.s1p")
-    [said] = [one for one in network.remarks if one.warns]
-    assert "75 ohm" in said.what and "R 50" in said.what and said.line == 1
+    [doubt] = network.doubts
+    assert (doubt.kind.value, doubt.line) == ("reference", 1)
+    assert "75 ohm" in doubt.what and "R 50" in doubt.what
+    nearly = read_text(tmp_path, "! Z0 = 50.5 Ohm\n# GHz S RI R 50\n1 1 0\n", "a.s1p")
+    [said] = nearly.remarks
+    assert "50.5 ohm" in said.what and said.warns and nearly.doubts == ()
     same = read_text(tmp_path, "! Z0 = 75 Ohm\n# GHz S RI R 75\n1 1 0\n", "a.s1p")
     assert not same.remarks
 
