@@ -77,6 +77,23 @@ def test_noise_and_linearity_are_met_together_and_the_chain_closes() -> None:
     assert all(one.smallest < 0.03 for one in found.closure.limits)
 
 
+def test_a_limit_on_gain_does_not_make_limits_on_distortion_look_infeasible() -> None:
+    chain = receiver(requirements=("R-NF", "R-IP", "R-G"))
+    requirements = [
+        a_requirement("R-G", block="SYS", quantity=a_quantity("gain"), limit=at_least(28), conditions=None),
+        a_requirement(
+            "R-NF", block="SYS", quantity=a_quantity("noise_figure"), limit=at_most(2.5), conditions=None
+        ),
+        a_requirement(
+            "R-IP", block="SYS", quantity=a_quantity("iip3"), limit=at_least(-14, "dBm"), conditions=None
+        ),
+    ]
+    found = least_effort(chain, project_of(chain, requirements=requirements), DICTIONARY)
+    assert found.closure.closes is True
+    assert {one.requirement for one in found.binding} == {"R-NF", "R-IP", "R-G"}
+    assert all(abs(one.harder_db) < 10.0 for one in found.strains)
+
+
 def test_free_gain_lowers_the_effort() -> None:
     chain = receiver(requirements=("R-NF", "R-IP"))
     requirements = [
