@@ -112,7 +112,7 @@ def _settle_format(settled: SettledNetwork, text: str) -> None:
 
 def _settle_reference(settled: SettledNetwork, text: str) -> None:
     """The entries stand as written; what is settled is the impedance at which they hold, which the title then says."""
-    network, words = settled.network, re.sub(r"\b(?:ohms?)\b|Ω|[,;]", " ", text.casefold()).split()
+    network, words = settled.network, re.sub(r"\b(?:ohms?)\b|ω|[,;]", " ", text.casefold()).split()
     if words == ["comments"] and network.impedances is not None:
         settled.network = replace(network, at_impedances=True)
         settled.notes.append("the entries are referred to the impedances of the comments, as stated")

@@ -179,7 +179,7 @@ class NetworkFile:
 
     @property
     def reference_words(self) -> str:
-        """What the entries are referred to: "50 ohm", "50, 75 ohm", or the impedances of the comments with their range."""
+        """What the entries are referred to: "50 ohm", "50, 75 ohm", or the range of the impedances of the comments."""
         if self.at_impedances and self.impedances is not None:
             size = np.abs(self.impedances)
             return f"the impedances of the comments ({size.min():.4g} to {size.max():.4g} ohm)"
