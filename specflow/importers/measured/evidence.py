@@ -11,13 +11,14 @@ import numpy as np
 from specflow.importers.measured.at_headers import states_condition
 from specflow.importers.measured.axis import add_axis
 from specflow.importers.measured.column import ColumnMeaning
-from specflow.importers.measured.conditions import merged_items, read_conditions
+from specflow.importers.measured.conditions import read_conditions
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.corrections import with_corrections
 from specflow.importers.measured.directions import add_directions
 from specflow.importers.measured.document import Identity, Said, make_document
 from specflow.importers.measured.facts import states_something
 from specflow.importers.measured.header_text import header_key
+from specflow.importers.measured.item_column import ask_for_item, read_items
 from specflow.importers.measured.items import is_item
 from specflow.importers.measured.located import LocatedTable
 from specflow.importers.measured.meaning import read_meanings
@@ -30,23 +31,21 @@ from specflow.importers.measured.row_kinds import by_row_kind
 from specflow.importers.measured.scaling import ask_about_title
 from specflow.importers.measured.selection import select_rows
 from specflow.importers.measured.slip_findings import slip_findings
-from specflow.importers.measured.stated import PERSON, Stated
+from specflow.importers.measured.stated import Stated
 from specflow.importers.measured.statements import is_reading
 from specflow.importers.measured.stating import collect
-from specflow.importers.measured.subject import find_block, item_name, item_notes
+from specflow.importers.measured.subject import find_block, item_notes
 from specflow.importers.measured.values import column_name, read_values, with_register
-from specflow.importers.measured.words import fill_down, read_dates, read_words
+from specflow.importers.measured.words import read_dates, read_words
 from specflow.importers.measured.work import TableWork
 from specflow.importers.measured.zero_hertz import note_zero_hertz
 from specflow.model.base import code_key
-from specflow.model.columns import TextColumn
 from specflow.model.evidence import EvidenceColumns, EvidenceTable
 from specflow.model.requirement import Method, Stage
 
 E = TypeVar("E", Method, Stage)
 
 _KEPT = (Role.STATED_LIMIT, Role.STATED_VERDICT, Role.REQUIREMENT, Role.REMARK, Role.SPECTRUM)
-_ON_AN_ITEM = (Method.TEST, Method.DEMONSTRATION, Method.INSPECTION)
 
 
 def collected(located: LocatedTable, context: Context, person: Mapping[str, str]) -> Stated:
@@ -226,14 +225,14 @@ def _lies_on_its_side(work: TableWork) -> bool:
 def _evidence(
     work: TableWork, key: str, title: str, sheet: str
 ) -> tuple[EvidenceTable | None, EvidenceColumns | None]:
-    items = _items(work)
+    items = read_items(work)
     method = _one_of(Method, work, "method", Method.TEST)
     stage = _one_of(Stage, work, "stage", Stage.QUALIFICATION)
     block, block_from, question = find_block(work.table, work.context, work.stated, items)
     if question:
         work.questions.append(question)
     work.notes += item_notes(items, work.context, block)
-    _ask_for_item(work, method, items)
+    ask_for_item(work, method, items)
     conditions = read_conditions(work.table, work.meanings, work.stated, work.rows, work.rejects)
     work.questions += conditions.questions
     work.notes += conditions.notes
@@ -279,37 +278,6 @@ def _evidence(
         said = Said(peaks, corrected.applied, corrected.words)
         document = make_document(work, identity, documents, conditions.documents, columns, said)
     return (None, None) if document is None else (document, columns)
-
-
-def _items(work: TableWork) -> TextColumn:
-    columns = work.of(Role.ITEM)
-    if columns:
-        if any(one.by == PERSON for one in work.stated.items):
-            work.notes.append("items are named row by row; the one that was stated was not used")
-        words = read_words(work.table, columns[0].column, work.rows, work.rejects)
-        words = merged_items(work.table, columns[0].column, work.rows, words, work.notes)
-        return fill_down(words) if columns[0].fill_down else words
-    item = item_name(work.stated.items, work.context)
-    if item:
-        if item != work.stated.text("item"):
-            work.notes.append(f"the item is {item}, as the project knows it")
-        return TextColumn(np.zeros(len(work.rows), np.int32), (item,))
-    return TextColumn(np.full(len(work.rows), -1, np.int32), ())
-
-
-def _ask_for_item(work: TableWork, method: Method, items: TextColumn) -> None:
-    unnamed = int(np.count_nonzero(items.codes < 0))
-    pivot = work.mapping.pivot
-    if method not in _ON_AN_ITEM or not unnamed or (pivot is not None and "{item}" in pivot.header):
-        return
-    if unnamed == len(work.rows):
-        remedy = (
-            '--state item=SERIAL, an item column, or a line "DUT: SERIAL" above the table; '
-            "results of a simulation: --state method=analysis"
-        )
-        work.ask("item", "", f"a {method.value} must say which item it was on", remedy)
-    else:
-        work.notes.append(f"{unnamed} of {len(work.rows)} rows name no item")
 
 
 def _one_of(kind: type[E], work: TableWork, name: str, default: E) -> E:
