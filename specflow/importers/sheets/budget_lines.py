@@ -138,7 +138,7 @@ def _line(row: SheetRow, order: int, block: str, group: _Lines, intake: Intake) 
         correlation_group=row.text("correlation_group"),
         shared=row.one_of("shared", SHARED, "common"),
         growth=growth,
-        sideband=row.one_of("sideband", SIDEBANDS, ""),
+        sideband=_sideband(row),
         plane=row.text("plane") or named.plane,
         statistic=row.text("statistic") or named.statistic,
         maturity=row.choice("maturity", Maturity, Maturity.ESTIMATED),
@@ -151,6 +151,20 @@ def _line(row: SheetRow, order: int, block: str, group: _Lines, intake: Intake) 
         words += f" {tolerance_words(tolerance, line.unit)}" if tolerance is not None else ""
         group.words.append("; ".join((words, *notes)))
     return line
+
+
+def _sideband(row: SheetRow) -> str:
+    """Return of which sidebands a noise figure is; a name that says it ("NF DSB") must not be lost or contradicted."""
+    written = row.one_of("sideband", SIDEBANDS, "")
+    words = row.text("parameter").upper().replace("(", " ").replace(")", " ").split()
+    named = next((one for one in ("SSB", "DSB") if one in words), "")
+    if named and written and named != ("DSB" if written == "both" else written):
+        row.fault(
+            "sideband",
+            f"the name {row.text('parameter')!r} says {named}, this column says {written}",
+            "say of which sidebands the figure is, the same in both",
+        )
+    return written or named
 
 
 def _context(budget: str, block: str, unit: str, intake: Intake) -> CellContext:

@@ -190,6 +190,11 @@ def test_loading_the_budgets_without_their_lines_keeps_the_lines_that_the_projec
         ({"Tolerance": "", "Distribution": ""}, "there is no tolerance"),
         ({"Distribution": "normal"}, "has no limits"),
         ({"Parameter": "ip3"}, "ip3"),
+        ({"Parameter": "NF DSB", "Value": "8 dB", "Sideband": "SSB"}, "says DSB, this column says SSB"),
+        (
+            {"Parameter": "noise figure (SSB)", "Value": "8 dB", "Sideband": "both"},
+            "says SSB, this column says both",
+        ),
         ({"N in parallel": 0}, "not a whole number from 1"),
         ({"Growth allowance": -0.5}, "is no allowance"),
     ],
@@ -200,6 +205,11 @@ def test_lines_that_are_refused(tmp_path: Path, change: dict[str, Any], words: s
     assert any(words in message for message in found), found
     assert all(finding.remedy and finding.origin for finding in draft.findings if finding.severity == "error")
     assert all(not budget.lines for budget in draft.documents if isinstance(budget, Budget))
+
+
+def test_a_name_that_says_of_which_sidebands_a_noise_figure_is_counts(tmp_path: Path) -> None:
+    lines = [LINES[0], LINES[1] | {"Parameter": "NF DSB"}, LINES[2]]
+    assert budget_of(draft_of(tmp_path, lines=lines)).lines[1].sideband == "DSB"
 
 
 def test_one_mistake_leaves_all_lines_of_the_budget_as_they_were(tmp_path: Path) -> None:
