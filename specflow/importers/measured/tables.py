@@ -23,7 +23,7 @@ from specflow.importers.measured.header_cells import (
 from specflow.importers.measured.header_rows import HeaderRow, Recognises, find_header
 from specflow.importers.measured.statements import is_reading
 from specflow.importers.measured.table_body import TableBody
-from specflow.importers.readers import Grid
+from specflow.importers.readers import Grid, is_blank
 
 __all__ = [
     "Axis",
@@ -55,7 +55,10 @@ def cut_table(grid: Grid, top: int, row: int, header_rows: int, recognises: Reco
     """Return the table whose header begins in ``row`` and has ``header_rows`` rows."""
     header_rows = max(header_rows, 2 if has_second_row(grid, row) else 1)
     headers = read_headers(grid, row, header_rows)
-    units_row = find_units_row(grid, row + header_rows, headers)
+    below = row + header_rows
+    if below < grid.last_row and all(map(is_blank, grid.row(below))):
+        below += 1  # a line is drawn under the headers
+    units_row = find_units_row(grid, below, headers)
     if units_row is None:
         headers = with_nameless_axis(grid, row + header_rows, headers)
         units_row = row + header_rows if any(header.unit for header in headers) else None

@@ -18,9 +18,12 @@ SAMPLE_LINES = 400
 
 _MOST_SETTINGS = 6
 _MOST_WORDS = 4
+_MOST_TITLES = 3
 
 _NUMBER = re.compile(r"[<>≤≥]?\s*[+\-−]?(?:[0-9]+(?:[.,][0-9]*)?|[.,][0-9]+)(?:[eE][+\-−]?[0-9]+)?\s*%?")
 _SETTING = re.compile(r"[^0-9:=,][^:=,]*[:=]\s*[+\-−]?[0-9]+")
+_IN_SQUARE = re.compile(r"[^\[\]]+\[[^\[\]]*\]")
+_IN_ROUND = re.compile(r"[^()]+\([^()]*\)")
 _COMMA_IN_NUMBER = re.compile(r"[0-9],[0-9]")
 _WITH_THOUSANDS = re.compile(r"[+\-−]?[0-9]{1,3}(?:[ \u00a0\u202f'][0-9]{3})+[.,][0-9]+")
 _LIKE_THOUSANDS = re.compile(r"[+\-−]?[0-9]{1,3}[.,][0-9]{3}")
@@ -54,11 +57,24 @@ def find_layout(lines: Sequence[str]) -> Layout:
         score, width = _score(sample, delimiter)
         if score > best_score * 1.001:
             best, best_score, best_width = delimiter, score, width
+    if best == BLANKS and (sure := _parts_every_line(sample)):
+        best, best_width = sure
     fields = [field for line in sample for field in split(line, best)]
     if best == ",":
         _refuse_decimal_comma(sample, best_width)
     mark = decimal_mark(fields)
     return Layout(best, best_width, mark, is_grouped(fields, mark))
+
+
+def _parts_every_line(sample: Sequence[str]) -> tuple[str, int] | None:
+    """The mark that parts all lines below a title into as many fields, and their number: blanks are inside them then,
+    as in ``27.5 GHz<tab>-0.35``."""
+    for delimiter in ("\t", ";", "|"):
+        parted = [len(split(line, delimiter)) for line in sample]
+        start = next((place for place, width in enumerate(parted) if width > 1), len(parted))
+        if start <= _MOST_TITLES and len(parted) - start > 1 and len(set(parted[start:])) == 1:
+            return delimiter, parted[start]
+    return None
 
 
 def split(line: str, delimiter: str) -> list[str]:
@@ -111,9 +127,16 @@ def split_to_width(line: str, width: int, single_blanks: bool = False) -> list[s
     others = [delimiter for delimiter in DELIMITERS if delimiter != BLANKS]
     ways = [split(line, one) for one in others if one != "," or not _COMMA_IN_NUMBER.search(line)]
     ways.append(re.split(r"\t+| {2,}", line.strip()))
+    ways += [_with_their_units(line, unit) for unit in (_IN_SQUARE, _IN_ROUND)]
     if single_blanks:
         ways.append(line.split())
     return next((fields for fields in ways if len(fields) == width), None)
+
+
+def _with_their_units(line: str, unit: re.Pattern[str]) -> list[str]:
+    """The titles of a line in which each has its unit in brackets: ``Theta [deg.]  Phi   [deg.]``."""
+    found = [" ".join(match[0].split()) for match in unit.finditer(line)]
+    return found if "".join(found).replace(" ", "") == re.sub(r"\s+", "", line) else []
 
 
 def is_number(text: str) -> bool:

@@ -20,6 +20,8 @@ from specflow.importers.readers.stores import Value
 
 COMMENT_MARKS = ("#", "!", "%", "//")
 
+_RULE = frozenset("-=_*~")
+_BESIDE_RULES = re.compile(r"[\s|+:;,]+")
 _KEY_LINE = re.compile(r"[^\W\d_][^:=,;0-9]{0,40}[:=]\s*\S")
 
 
@@ -42,6 +44,9 @@ class TextLines:
     def rows(self, layout: Layout) -> list[list[Value]]:
         """The cells of each line; blank lines are empty rows."""
         rows = self._parted(layout)
+        for place, line in enumerate(self._lines):
+            if rows[place] and _is_rule(line):
+                rows[place] = []  # a line drawn under the headers
         self._part_comments(rows, layout)
         if layout.width >= 2:
             self._part_headers(rows, layout)
@@ -127,6 +132,14 @@ def _comment_text(line: str) -> str | None:
         return None
     rest = text.lstrip("#!%/") if not text.startswith("//") else text.lstrip("/")
     return None if rest[:1] in (",", ";", "\t", "|") else rest
+
+
+def _is_rule(line: str) -> bool:
+    """Whether a line is drawn and not written: ``-----  -----``, ``|=====|=====|``."""
+    strokes = [stroke for stroke in _BESIDE_RULES.split(line) if stroke]
+    return bool(strokes) and all(
+        len(stroke) > 2 and stroke[0] in _RULE and not stroke.strip(stroke[0]) for stroke in strokes
+    )
 
 
 def is_separator_line(line: str) -> bool:

@@ -34,3 +34,15 @@ def test_a_line_may_state_several_conditions(tmp_path: Path) -> None:
     assert across["azimuth"].tolist() == [-10, 0, 10] and across["elevation"].tolist() == [0, 0, 0]
     assert along["azimuth"].tolist() == [0, 0] and along["elevation"].tolist() == [-10, 10]
     assert set(across["frequency"].tolist()) == {28}
+
+
+def test_units_below_a_line_drawn_under_the_headers(tmp_path: Path) -> None:
+    lines = [
+        "Frequency    Noise Figure    Gain",
+        "---------    ------------    ----",
+        "[GHz]        [dB]            [dB]",
+    ]
+    table = taken(
+        one_table(text(tmp_path / "a.txt", "\n".join([*lines, "27.5  1.4  24", "28.0  1.5  23.9"])))
+    )
+    assert low(table, "Noise Figure") == [1.4, 1.5] and low(table, "Gain") == [24, 23.9]

@@ -317,3 +317,24 @@ def test_marks_count_where_they_can_only_be_one_thing(
 def test_a_nul_behind_a_decimal_comma_leaves_no_number(tmp_path: Path) -> None:
     grid = grid_of(tmp_path / "a.csv", b"f;G\n27,5;20,5\n28,5;20,\0\n28,5;20,5\n29,5;5,5\n")
     assert grid.column_floats(2, 2, 6)[1] == [3]
+
+
+@pytest.mark.parametrize(
+    ("head", "names"),
+    [
+        ("Theta [deg.]  Phi   [deg.]  Abs(Dir.)[dBi   ]", ["Theta [deg.]", "Phi [deg.]", "Abs(Dir.)[dBi ]"]),
+        ("f / GHz       Realized Gain / dBi     Loss/dB", ["f / GHz", "Realized Gain / dBi", "Loss/dB"]),
+    ],
+)
+def test_a_line_drawn_under_the_headers_is_none_of_the_rows(
+    tmp_path: Path, head: str, names: list[str]
+) -> None:
+    grid = grid_of(tmp_path / "a.txt", f"{head}\n{'-' * 60}\n" + "  0.000   15.000   1.0e+01\n" * 3)
+    assert grid.rows[:2] == [names, []]
+    assert grid_of(tmp_path / "b.csv", "a,b\n---,----\n1,---\n").rows == [["a", "b"], [], ["1", "---"]]
+
+
+def test_blanks_within_fields_do_not_part_them(tmp_path: Path) -> None:
+    assert grid_of(tmp_path / "a.txt", "Spots\nOffset\tL(f)\n1 kHz\t-85.1 dBc/Hz\n1 MHz\t-125 dBc/Hz\n").rows[1:] == [
+        ["Offset", "L(f)"], ["1 kHz", "-85.1 dBc/Hz"], ["1 MHz", "-125 dBc/Hz"],
+    ]  # fmt: skip
