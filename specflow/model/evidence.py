@@ -251,6 +251,11 @@ SOURCE_COLUMN = "source column"
 AT_COLUMN = "at"
 
 
+def as_read_column(name: str) -> str:
+    """Return the extra column that keeps the readings of a value column as they were before a correction."""
+    return f"{name} as read"
+
+
 @dataclass(frozen=True, slots=True)
 class ValueArrays:
     """Values of one column: a reading is the interval [low, high] (the same array when all are points).

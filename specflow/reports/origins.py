@@ -2,16 +2,24 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 
 from specflow.conditions.spans import speaking
 from specflow.model.base import code_key
-from specflow.model.evidence import SOURCE_COLUMN, EvidenceColumns, EvidenceFile, EvidenceTable, ValueColumn
+from specflow.model.correction import Correction
+from specflow.model.evidence import (
+    SOURCE_COLUMN,
+    EvidenceColumns,
+    EvidenceFile,
+    EvidenceTable,
+    ValueColumn,
+    as_read_column,
+)
 from specflow.model.origin import Origin, column_number
 from specflow.model.report import ReportCell
 from specflow.model.snapshot import Snapshot
 from specflow.model.verdict import RecordRef
-from specflow.reports.figures import reading, text
+from specflow.reports.figures import interval, reading, text
 
 
 class OriginFinder:
@@ -73,9 +81,32 @@ class OriginFinder:
         return self.column(record).column if stacked is None else column_number(stacked.word(record.row))
 
     def recorded(self, record: RecordRef | None) -> ReportCell:
-        """Return the value as it stands in its cell, in the unit as recorded."""
+        """Return the value as it stands in its cell, in the unit as recorded.
+
+        A corrected reading is told as it was read. What was derived stands in no cell (its place is that of the raw
+        reading that governs), which is said behind the value.
+        """
         if record is None:
             return text("")
+        before = self.as_read(record)
+        if before:
+            return text(f"{before}, before correction")
         arrays = self.columns(record.table).values[record.column]
         low, high = float(arrays.low[record.row]), float(arrays.high[record.row])
-        return reading(low, high, self.column(record).unit)
+        found = reading(low, high, self.column(record).unit)
+        return text(f"{found.text}, derived") if self.table(record.table).derivation else found
+
+    def as_read(self, record: RecordRef) -> str:
+        """Return the reading before a correction (its unit where the correction left that alone), "" where none was."""
+        kept = self.columns(record.table).extra.get(as_read_column(record.column))
+        words = "" if kept is None else kept.word(record.row)
+        if not words or any(one.unit != "dB" for one in self._applied(record)):
+            return words
+        low, _, high = words.partition(" .. ")
+        return interval(float(low), float(high or low), self.column(record).unit)
+
+    def _applied(self, record: RecordRef) -> Iterator[Correction]:
+        for one in self.table(record.table).applied:
+            found = self._snapshot.find(Correction, one.correction)
+            if one.column == record.column and found is not None:
+                yield found

@@ -37,7 +37,8 @@ POINT_COLUMNS = (
 )
 POINTS_INTRO = (
     "The record that governs each required point: all points for the item that is shown (the one with credit and the "
-    "most points), then what other items have. 'As recorded' is what stands in the cell, before any conversion."
+    "most points), then what other items have. 'As recorded' is what stands in the cell, before any conversion or "
+    "correction; what was derived stands in none: its cell is that of the raw reading that governs."
 )
 
 

@@ -181,13 +181,15 @@ def _evidence(
 def _as_recorded(
     record: RecordRef | None, requirement: Requirement, finder: OriginFinder, how_read: bool
 ) -> str:
-    """Say what stands in the cell where it is another quantity, or (``how_read``) in another unit than the limit."""
+    """Say what stands in the cell where it is another quantity, was corrected, or (``how_read``) has another unit."""
     if record is None:
         return ""
     column = finder.column(record)
     relation = relation_between(column.quantity.parameter, requirement.quantity.parameter)
     if relation is not None:
         return f" · recorded as {relation.recorded.title} {finder.recorded(record).text}; {relation.words}"
+    if finder.as_read(record):
+        return f" · recorded as {finder.recorded(record).text}"
     if not how_read or column.unit == requirement.limit.unit:
         return ""
     return f" · recorded as {finder.recorded(record).text}, converted"

@@ -22,7 +22,7 @@ from specflow.importers.measured.stated import MAPPING, PERSON
 from specflow.importers.measured.work import TableWork
 from specflow.model.columns import TextColumn
 from specflow.model.correction import AppliedCorrection, Correction
-from specflow.model.evidence import EvidenceColumns, ValueArrays, ValueColumn
+from specflow.model.evidence import EvidenceColumns, ValueArrays, ValueColumn, as_read_column
 from specflow.units import converter, format_unit, parse_unit
 
 Floats = NDArray[np.float64]
@@ -123,7 +123,7 @@ def _add(work: TableWork, correction: Correction, done: Corrected, place: int) -
     high = low if arrays.high is arrays.low else arrays.high + step
     unit = format_unit(unit_after(value.unit, correction.unit))
     words = f"{said_of(correction)}: {_range(step[there])} {correction.unit} added, linear in dB over frequency; {note}"
-    raw = f"{value.name} as read"
+    raw = as_read_column(value.name)
     if raw not in done.columns.extra:
         extra = {**done.columns.extra, raw: _as_read(arrays)}
         done.columns = replace(done.columns, extra=extra)
