@@ -91,6 +91,14 @@ def _check_ends(along: Floats, inside: Floats, wanted: Range, reach: Floats, nam
         return
     needed = range_words(name, wanted.low, wanted.high, unit)
     known = along[~np.isnan(along)]
+    missing = [edge for edge, met in ((wanted.low, starts), (wanted.high, ends)) if not met]
+    if len(known) and all(known.min() < edge < known.max() for edge in missing):
+        stands = "; ".join(_neighbours(known, edge, unit) for edge in missing)
+        raise CalculationError(
+            f"the readings go past {needed}, but {stands}",
+            hint="add the ends to the sweep, ask for a range between two readings, or state the setting tolerance that "
+            "the requirement has (±)",
+        )
     there = "no value" if not len(known) else range_words(name, float(known.min()), float(known.max()), unit)
     end = "neither end is" if not starts and not ends else f"the {'upper' if starts else 'lower'} end is not"
     raise CalculationError(
@@ -98,3 +106,9 @@ def _check_ends(along: Floats, inside: Floats, wanted: Range, reach: Floats, nam
         hint="measure the whole range, ask for the range that is there, or state the setting tolerance that the "
         "requirement has (±), if the end was set within it",
     )
+
+
+def _neighbours(known: Floats, edge: float, unit: str) -> str:
+    """Say that no reading stands at an end of a range, and where the nearest do."""
+    below, above = float(known[known < edge].max()), float(known[known > edge].min())
+    return f"none stands at {edge:.10g} {unit} (its neighbours are {below:.10g} and {above:.10g} {unit})"

@@ -106,6 +106,16 @@ def test_a_range_that_is_not_covered_is_refused_with_what_there_is(over: str, me
         derived_of("worst", swept(), over=over)
 
 
+def test_an_end_between_two_readings_is_refused_with_its_neighbours() -> None:
+    """The readings go past both ends: "not reached" would send the bench to measure what it has."""
+    with pytest.raises(CalculationError) as caught:
+        derived_of("worst", swept(), over="frequency 18..19.5 GHz")
+    assert caught.value.message.startswith(
+        "the readings go past 18 to 19.5 GHz, but none stands at 18 GHz (its neighbours are 17.7 and 18.2 GHz); "
+        "none stands at 19.5 GHz (its neighbours are 19.2 and 19.7 GHz)"
+    )
+
+
 def test_a_setting_tolerance_lets_an_end_be_near() -> None:
     found = derived_of("worst", swept(), over="frequency 17.695..20.205 GHz ± 10 MHz step 0.5 GHz")
     assert found.columns.values["gain"].low[0] == 21.8

@@ -44,7 +44,10 @@ def _whole(table: NetworkTable, axis: Axis, names: Sequence[str]) -> str:
     along = np.unique(table.axis[has])
     if len(along) < 2:
         return ""
-    gap = f" step {_figure(np.diff(along).max())} {_gap_unit(axis.unit)}".rstrip() if not has.all() else ""
+    gap = ""
+    if not has.all():
+        widest = float(f"{np.diff(along).max():.12g}")  # without the last digits of a difference
+        gap = f" step {_figure(widest)} {_gap_unit(axis.unit)}".rstrip()
     return f"{axis.dimension}: {_figure(along[0])}..{_figure(along[-1])} {axis.unit}{gap}"
 
 

@@ -538,3 +538,25 @@ def test_an_option_line_is_stated_for_numbers_above_the_one_of_the_file_only(
     assert any("another option line (# MHz S DB R 50) was ignored" in note for note in table.notes)
     with pytest.raises(FileError, match="an option line of its own"):
         raw(amplifier, **{"option line": "# GHz S DB R 50"})
+
+
+def test_a_comment_on_how_the_numbers_were_treated_is_shown(tmp_path: Path) -> None:
+    path = tmp_path / "a.s2p"
+    path.write_text(
+        "! De-embedded to the connector planes\n! Averaging 16, IFBW 100 Hz\n! a fine day\n! Smoothing on\n"
+        f"# GHz S MA R 50\n{ROWS}"
+    )
+    shown = [note for note in raw(path).notes if note.startswith("not used")]
+    assert shown == [
+        "not used: line 1: De-embedded to the connector planes",
+        "not used: line 2: Averaging 16, IFBW 100 Hz",
+        "not used: line 4: Smoothing on",
+    ]
+
+
+def test_the_step_around_a_hole_is_said_without_digits_of_its_difference(tmp_path: Path) -> None:
+    path = tmp_path / "a.s2p"
+    rows = "".join(f"{0.1 * k:.1f} 0.1 0 {2 if k != 3 else 'nan'} 0 0.01 0 0.2 0\n" for k in range(1, 8))
+    path.write_text(f"# GHz S MA R 50\n{rows}")
+    [plan] = raw(path, wanted("group_delay"), **PORTS).plans
+    assert plan.over == "frequency: 0.1..0.7 GHz step 0.2 GHz"
