@@ -174,7 +174,10 @@ def _single(found: list[int], what: str) -> int:
         return found[0]
     if not found:
         raise _NotPlanned(f"no port is named {what!r}", asks=True)
-    raise _NotPlanned(f"{len(found)} ports are {what!r}", asks=True)
+    numbers = ", ".join(str(place + 1) for place in found)
+    raise _NotPlanned(
+        f"the ports {numbers} are all {what!r}: its plane must name one of them, as in 'port 2' or 'port 1 to port 2'"
+    )
 
 
 def _forward(quantity: QuantityIdentity, ports: Ports) -> Entry:

@@ -560,3 +560,16 @@ def test_the_step_around_a_hole_is_said_without_digits_of_its_difference(tmp_pat
     path.write_text(f"# GHz S MA R 50\n{rows}")
     [plan] = raw(path, wanted("group_delay"), **PORTS).plans
     assert plan.over == "frequency: 0.1..0.7 GHz step 0.2 GHz"
+
+
+def test_a_requirement_that_leaves_open_which_output_stops_no_file(tmp_path: Path) -> None:
+    """No name of a port settles it: the requirement has to say it, and the rest is derived meanwhile."""
+    path = tmp_path / "a.s3p"
+    path.write_text("# GHz S MA R 50\n1 0.1 0 0.7 0 0.6 0\n0.7 0 0.1 0 0.2 0\n0.6 0 0.2 0 0.1 0\n")
+    names = {"port 1": "in", "port 2": "out 1", "port 3": "out 2"}
+    table = raw(path, wanted("insertion_loss"), wanted("amplitude_imbalance", id="R-2"), **names)
+    assert planned(table) == [("amplitude_imbalance", "amplitude imbalance", "S21, S31")]
+    [left] = [note for note in table.notes if note.startswith("not derived")]
+    assert "R-1" in left and "the ports 2, 3 are all 'output'" in left and "must name one of them" in left
+    table = raw(path, wanted("insertion_loss", "input to port 2"), **names)
+    assert planned(table) == [("insertion_loss", "loss", "S21")]
