@@ -7,7 +7,15 @@ from typing import TYPE_CHECKING, Annotated
 import typer
 
 from specflow.cli.console import ask, person, put_json, say
-from specflow.cli.options import ByOption, DryRunOption, JsonOption, ProjectOption, YesOption, open_store
+from specflow.cli.options import (
+    ByOption,
+    DryRunOption,
+    JsonOption,
+    ProjectOption,
+    YesOption,
+    open_store,
+    refuse_idle,
+)
 from specflow.errors import SpecflowError
 
 if TYPE_CHECKING:
@@ -110,6 +118,12 @@ def allocate(
     from specflow.workflows.allocate import accept_allocation, preview_allocation
 
     if solve:
+        refuse_idle(
+            "with --solve, which allocates nothing", "leave it out",
+            equal=equal, proportional=proportional, least_effort=least_effort, nominal=nominal,
+            by_conditions=by_conditions, reserve=reserve, fix=fix, free_gain=free_gain, weight=weight,
+            by_hand=by_hand, because=because,
+        )  # fmt: skip
         _solve(budget, solve, project, as_json=as_json)
         return
     way = _way(equal=equal, proportional=proportional, least_effort=least_effort)

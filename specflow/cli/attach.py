@@ -17,6 +17,7 @@ from specflow.cli.options import (
     TakeRestOption,
     YesOption,
     open_store,
+    refuse_idle,
 )
 from specflow.errors import ExitCode, SpecflowError
 
@@ -114,7 +115,8 @@ def attach(
     if verify:
         from specflow.cli.attach_verify import verify_attached
 
-        _refuse_beside_verify(
+        refuse_idle(
+            "with --verify, which attaches nothing", "leave it out",
             state=state, sheet=sheet, mapping=mapping, propose_mapping=propose_mapping, supersedes=supersedes,
             beside=beside, resolves=resolves, include_hidden=include_hidden, keep=keep, take_rest=take_rest,
             yes=yes, dry_run=dry_run,
@@ -143,15 +145,6 @@ def attach(
             return _propose(store, files[0], options, propose_mapping)
         run = _Run(store, options, decision, yes, dry_run, as_json)
         return run.attach_all(files)
-
-
-def _refuse_beside_verify(**options: object) -> None:
-    """Refuse options that say how to attach, where nothing is attached."""
-    given = [f"--{name.replace('_', '-')}" for name, value in options.items() if value]
-    if given:
-        raise SpecflowError(
-            f"--verify attaches nothing, so {', '.join(given)} has no meaning with it", hint="leave it out"
-        )
 
 
 def _statements(state: list[str]) -> dict[str, str]:

@@ -8,7 +8,15 @@ from typing import TYPE_CHECKING, Annotated, Any
 import typer
 
 from specflow.cli.console import ask, person, progress, put, put_json, say
-from specflow.cli.options import ByOption, DryRunOption, JsonOption, ProjectOption, YesOption, open_store
+from specflow.cli.options import (
+    ByOption,
+    DryRunOption,
+    JsonOption,
+    ProjectOption,
+    YesOption,
+    open_store,
+    refuse_idle,
+)
 from specflow.errors import SpecflowError
 
 if TYPE_CHECKING:
@@ -102,9 +110,11 @@ def budget(
     from specflow.workflows.show_budget import list_budgets, show_budget
 
     if settings:
+        refuse_idle("with --set", "leave it out", at=at, method=method, trials=trials, sigma=sigma)
         _edit(code, settings, reason, project, Answer(yes=yes, dry_run=dry_run, by=by), as_json=as_json)
         return
     if not code:
+        refuse_idle("without a budget", "name the budget", at=at, method=method, trials=trials, sigma=sigma)
         with open_store(project, read_only=True) as store:
             table = list_budgets(store)
         put_json(table_as_json(table)) if as_json else put_table(table)

@@ -16,6 +16,7 @@ from specflow.cli.options import (
     YesOption,
     judged_on,
     open_store,
+    refuse_idle,
 )
 from specflow.errors import ExitCode, SpecflowError
 
@@ -103,11 +104,21 @@ def derive(
     """
     from specflow.workflows.derive import DeriveOptions
 
+    said = {
+        "from_": from_, "value": value, "over": over, "where": where, "set_": set_, "gives": gives, "plane": plane,
+        "statistic": statistic, "polarisation": polarisation, "for_": for_, "reason": reason,
+    }  # fmt: skip
+    alone = "--explain" if explain else "--again" if again else "--proposed" if proposed else ""
+    if alone and law:
+        raise SpecflowError(f"{alone} takes no law before it", hint=f"leave {law!r} or {alone} out")
+    if not law:
+        beside = f"with {alone}" if alone else "without a law"
+        refuse_idle(beside, "name a law (specflow derive lists them), or leave it out", **said)
     if explain:
         return _explain(explain)
-    if again and not law:
+    if again:
         return _derive_again(project, take_rest, yes, dry_run, as_json, person(by))
-    if proposed and not law:
+    if proposed:
         return _propose(project, as_json)
     if not law:
         return _list(as_json)

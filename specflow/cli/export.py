@@ -8,8 +8,7 @@ from typing import Annotated
 import typer
 
 from specflow.cli.console import progress, put, put_bytes, put_json, say
-from specflow.cli.options import AsOfOption, JsonOption, ProjectOption, judged_on, open_store
-from specflow.errors import SpecflowError
+from specflow.cli.options import AsOfOption, JsonOption, ProjectOption, judged_on, open_store, refuse_idle
 
 OutputOption = Annotated[
     str,
@@ -69,11 +68,13 @@ def export(
     from specflow.workflows.export import export_report, format_for, write_export
 
     if file:
-        if format or table:
-            raise SpecflowError(
-                "--file writes a file as it was received, not a report",
-                hint="leave --format and --table out",
-            )
+        refuse_idle(
+            "with --file, which writes a file as it was received",
+            "leave it out",
+            format=format,
+            table=table,
+            as_of=as_of,
+        )
         _write_copy(file, output, project, overwrite=overwrite, as_json=as_json)
         return
     with open_store(project, read_only=True) as store, progress("export"):

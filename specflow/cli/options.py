@@ -80,3 +80,11 @@ def judged_on(as_of: str) -> date:
         raise SpecflowError(
             f"{as_of!r} is not a date", where="--as-of", hint="write it as YYYY-MM-DD"
         ) from None
+
+
+def refuse_idle(where: str, remedy: str, /, **given: object) -> None:
+    """Refuse options that would do nothing; ``where`` is "with --verify", keywords are names of parameters."""
+    said = [f"--{name.strip('_').replace('_', '-')}" for name, value in given.items() if value]
+    if said:
+        has = "has" if len(said) == 1 else "have"
+        raise SpecflowError(f"{', '.join(said)} {has} no meaning {where}", hint=remedy)

@@ -15,6 +15,7 @@ from specflow.cli.options import (
     YesOption,
     judged_on,
     open_store,
+    refuse_idle,
 )
 from specflow.errors import SpecflowError
 
@@ -68,11 +69,12 @@ def try_(
             "there is nothing to try" if not changes else "changes and --alternatives are two questions",
             hint="give a change in quotes, or --alternatives REQUIREMENT",
         )
-    if keep and not reason:
-        raise SpecflowError("a change that is kept needs a reason", hint="say --reason '...'")
     if alternatives:
+        refuse_idle("with --alternatives", "leave it out", keep=keep, as_of=as_of, reason=reason)
         _compare(project, alternatives, as_json=as_json)
         return
+    if keep and not reason:
+        raise SpecflowError("a change that is kept needs a reason", hint="say --reason '...'")
     from specflow.workflows.try_change import keep_trial, try_changes
     from specflow.workflows.try_tables import trial_as_json
 

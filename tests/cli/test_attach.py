@@ -217,7 +217,9 @@ def test_verify_says_what_changed_and_ends_with_1(command: Command, project: Pat
     assert command("export", "--file", "F-1", "--format", "csv").code == ExitCode.BAD_INPUT
     assert command("attach", "--verify", "none").code == ExitCode.BAD_INPUT
     done = command("attach", "--verify", "--take-rest", "--state", "block=LNA")
-    assert done.code == ExitCode.BAD_INPUT and "--state, --take-rest has no meaning with it" in done.err
+    assert (
+        done.code == ExitCode.BAD_INPUT and "--state, --take-rest have no meaning with --verify" in done.err
+    )
 
 
 def test_a_correction_is_added_and_can_be_traced(command: Command, project: Path, tmp_path: Path) -> None:

@@ -88,6 +88,10 @@ def test_without_a_terminal_nothing_is_stored_unasked(command: Command, project:
         ((*WORST[:-1], "frequency 17..21 GHz"), "neither end is reached"),
         ((*WORST, "--set", "side"), "is not NAME=VALUE"),
         (("derive", "--explain", "nothing"), "there is no law 'nothing'"),
+        (("derive", "worst", "--again"), "--again takes no law before it"),
+        (("derive", "worst", "--proposed"), "--proposed takes no law before it"),
+        (("derive", "--again", "--from", "T-1"), "--from has no meaning with --again"),
+        (("derive", "--from", "T-1", "--set", "a=b"), "--from, --set have no meaning without a law"),
     ],
 )
 def test_bad_usage_ends_with_2_and_one_message(
