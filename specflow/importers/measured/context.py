@@ -12,6 +12,7 @@ from specflow.importers.measured.mapping import read_mappings
 from specflow.importers.measured.mapping_parts import LayoutMapping
 from specflow.importers.measured.quantity_text import name_quantity
 from specflow.importers.measured.roles import role_of_words, uncertainty_of
+from specflow.importers.measured.scattering_header import scattering_header
 from specflow.model.base import code_key
 from specflow.model.block import Block
 from specflow.model.conditions import ConditionsSet
@@ -72,6 +73,6 @@ class Context:
             return True
         if find_dimension(parts.name) or is_unlocated_temperature(parts.name):
             return True
-        if is_formatted_data(parts.name):
+        if is_formatted_data(parts.name) or scattering_header(text):
             return True
         return bool(name_quantity(parts, "", self.dictionary, ()).candidates)

@@ -17,6 +17,7 @@ from specflow.importers.measured.column import ColumnMeaning, Heading
 from specflow.importers.measured.condition_column import (
     axis_unit,
     condition_of,
+    is_bare_level,
     is_condition,
     is_open,
     is_temperature,
@@ -32,14 +33,15 @@ from specflow.importers.measured.header_text import header_key, known_unit, read
 from specflow.importers.measured.mapping import ColumnMapping, LayoutMapping
 from specflow.importers.measured.pairing import of_their_values, uncertainty_column, without_doubles
 from specflow.importers.measured.placeholders import only_mark
-from specflow.importers.measured.quantity_text import bare_word, name_quantity
+from specflow.importers.measured.quantity_text import NamedQuantity, bare_word, name_quantity
 from specflow.importers.measured.result import Role
 from specflow.importers.measured.roles import UncertaintyWords, role_of_words, uncertainty_of
 from specflow.importers.measured.scaling import scaled_unit, with_scale
+from specflow.importers.measured.scattering_header import ScatteringHeader, scattering_header
 from specflow.importers.measured.stated import PERSON, Stated
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.measured.unit_source import FoundUnit, find_unit
-from specflow.importers.measured.value_column import mapped_value, named_value
+from specflow.importers.measured.value_column import mapped_value, named_value, value_of
 from specflow.units import compatible, parse_unit
 
 _READING_AS_TEXT = re.compile(r"^\s*[<>≤≥]\s*[+\-−]?[0-9]")
@@ -149,6 +151,9 @@ class _Reader:
 
     def _by_words(self, heading: Heading) -> ColumnMeaning:
         parts = heading.parts
+        raw = scattering_header(parts.text)
+        if raw is not None:
+            return self._scattering(heading, raw)
         direction = self._direction(heading)
         if direction:
             return condition_of(heading, direction, heading.unit(), f"the header names {direction.title}")
@@ -163,6 +168,12 @@ class _Reader:
         quantity = name_quantity(parts, unit.unit, self._context.dictionary, self._context.planes)
         if dimension is not None and dimension.name == "time" and not unit.unit and self._is_clock(heading):
             return heading.means(Role.REMARK, "a time of day; kept as a remark")
+        if dimension is not None and is_bare_level(dimension, quantity, heading, self._context):
+            column = f"column {heading.letter}"
+            remedy = f'--state "{column}=condition" or "{column}=PARAMETER", or its role in a mapping'
+            return heading.ask(
+                f"may be the condition {dimension.title}, or a power that was measured", remedy
+            )
         if dimension is not None and (
             not quantity.candidates or is_condition(dimension, quantity, self._context)
         ):
@@ -190,6 +201,18 @@ class _Reader:
         if is_plain_head(parts.name) and self._stated.text("format"):
             return self._formatted(heading, unit)
         return self._unknown(heading)
+
+    def _scattering(self, heading: Heading, raw: ScatteringHeader) -> ColumnMeaning:
+        """An entry as recorded: no gain and no return loss, before somebody says which port is what."""
+        unit = FoundUnit(raw.unit, f"the header {heading.header.cell}") if raw.unit else heading.unit()
+        parameter = self._context.dictionary.get(raw.parameter)
+        assert parameter is not None
+        named = NamedQuantity(plane=raw.plane)
+        reason = (
+            f"raw, as in a network file: {raw.plane}, and no port is named; --state "
+            f'"column {heading.letter}=gain" (or what it is) takes it for that'
+        )
+        return value_of(heading, parameter, named, unit, self._context, self._stated, reason)
 
     def _direction(self, heading: Heading) -> KnownDimension | None:
         """The dimension of columns that say a direction by a letter, or by "angle" under a cut that is stated."""
