@@ -25,6 +25,7 @@ from specflow.importers.readers.touchstone_shape import outside_data
 _HIGHEST_HZ, _LOWEST_HZ = 1e13, 1e3
 _HUGE = 10.0
 _FEW = 3
+_SOME_PARTS = 6
 _SOME_ANGLES, _NEARLY_PI, _PI_AS_WRITTEN = 20, 3.0, 3.1416
 _POINTS = re.compile(r"\b(?:number of )?points\s*[:=]\s*(?P<count>\d+)\b", re.IGNORECASE)
 _EDGE = re.compile(
@@ -82,6 +83,11 @@ def _unlikely(network: NetworkFile) -> tuple[tuple[int, int, int], str] | None:
     with np.errstate(invalid="ignore"):
         if network.pair_format is PairFormat.DB and bool((first > 0).all()):
             return (0, 0, 0), "all entries are above 0 dB, as magnitudes would be"
+        parts = first.size >= _SOME_PARTS and bool(
+            (np.abs(first) <= 1.0).all() and (np.abs(second) <= 1.0).all()
+        )
+        if network.pair_format is PairFormat.DB and parts and (first.any() or second.any()):
+            return (0, 0, 0), "no number is beyond 1, as of real and imaginary parts"
         large = np.abs(second) if network.pair_format is PairFormat.RI else np.abs(first)
         if network.pair_format is not PairFormat.DB and np.nanmedian(large) > _HUGE:
             return _place(np.argwhere(large > _HUGE)[0]), "half of the entries are larger than 10 (20 dB)"

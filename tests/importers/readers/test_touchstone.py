@@ -655,3 +655,12 @@ def test_impedances_that_have_no_s_are_left_out_and_said(tmp_path: Path, matrix:
     assert np.isnan(network.s[0]).any() and network.s[1, 0, 0] == pytest.approx(0.5)
     [said] = [one for one in network.remarks if one.warns]
     assert (said.line, "1 of 2 frequencies have no S" in said.what) == (2, True)
+
+
+def test_real_and_imaginary_parts_under_db_are_doubted(tmp_path: Path) -> None:
+    """Read as dB and degrees they would be a lossless part; a real one has reflections far below 0 dB."""
+    rows = "".join(f"{k} -0.1 0.2 0.6 -0.7 0.6 -0.7 0.05 -0.1\n" for k in range(1, 5))
+    [doubt] = read_text(tmp_path, f"# GHz S DB R 50\n{rows}", "a.s2p").doubts
+    assert doubt.kind.value == "format" and "no number is beyond 1" in doubt.what
+    thru = "".join(f"{k} -30 0.2 -0.1 -0.7 -0.1 -0.7 -31 -0.1\n" for k in range(1, 5))
+    assert read_text(tmp_path, f"# GHz S DB R 50\n{thru}", "a.s2p").doubts == ()
