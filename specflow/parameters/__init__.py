@@ -5,6 +5,6 @@ unit), ``dictionary.py`` (loading, and finding a parameter by what a sheet calls
 that tell each other by a formula). Nothing here judges values.
 """
 
-from specflow.parameters.dictionary import Candidate, Dictionary, load_dictionary, suits
+from specflow.parameters.dictionary import SIDEBAND_PLANES, Candidate, Dictionary, load_dictionary, suits
 
-__all__ = ["Candidate", "Dictionary", "load_dictionary", "suits"]
+__all__ = ["SIDEBAND_PLANES", "Candidate", "Dictionary", "load_dictionary", "suits"]

@@ -48,7 +48,7 @@ class Candidate:
     ``unit`` is the unit as the header writes it ("" without one). ``leftover`` are words of the header that do not
     name the parameter (max, tx, measured); ``statistic`` is the statistic of the parameter that one of them says. An
     average of a level says none, because it may be one of power or one of dB. ``plane`` is a plane of the parameter
-    that stands in brackets: "spurious (TRP)".
+    that stands in brackets ("spurious (TRP)"), or the sideband convention in a name ("NF DSB").
     """
 
     parameter: Parameter
@@ -60,6 +60,8 @@ class Candidate:
 
 
 _MOST_KEPT = 4096
+#: How a mixer's noise figure counts its image. Conventions are planes: only like is compared with like.
+SIDEBAND_PLANES = ("SSB", "DSB")
 
 
 @dataclass(frozen=True)
@@ -156,7 +158,10 @@ class Dictionary:
         """Yield the candidates of each way to read a header, the most literal first."""
         for words in (header.every, (*header.words, *header.bracketed)):
             for kept, left_out in qualifier_choices(words):
-                yield [_candidate(*named, header.unit, left_out) for named in self._named(kept)]
+                yield [
+                    replace(_candidate(*named, header.unit, left_out), plane=_sideband(named[0], kept))
+                    for named in self._named(kept)
+                ]
         plane = spelling_key(header.bracketed)
         for kept, left_out in qualifier_choices(header.words) if plane else ():
             for parameter, reason in self._named(kept):
@@ -213,6 +218,12 @@ def _candidate(parameter: Parameter, reason: str, unit: str, left_out: tuple[str
     if left_out:
         reason += f", leaving out {' '.join(left_out)!r}"
     return Candidate(parameter, reason, unit, statistic, leftover=left_out)
+
+
+def _sideband(parameter: Parameter, words: Sequence[str]) -> str:
+    """Return the sideband convention that a name says ("NF DSB"), a plane of its parameter: 3 dB hang on it."""
+    said = {word.upper() for word in words}
+    return next((one for one in SIDEBAND_PLANES if one in said and one in parameter.planes), "")
 
 
 def _stands_in(key: str, header: Header) -> bool:

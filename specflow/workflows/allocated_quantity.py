@@ -19,7 +19,8 @@ def quantity_of(key: BlockParameter, probe: Probe, block: Block) -> QuantityIden
     """Return the quantity of a block's share.
 
     Plane and statistic are those that its lines state, or the recorded table that a line reads; else a figure that
-    belongs to one port has the block's plane of that name, "input" or "output", where it has one.
+    belongs to one port has the block's plane of that name, "input" or "output", where it has one. A mixer's noise
+    figure has the sideband convention for its plane: a double-sideband reading must not prove a single-sideband limit.
     """
     lines = [read.line for read in probe.chain.lines if key_of(read) == key]
     plane = _one(
@@ -29,16 +30,22 @@ def quantity_of(key: BlockParameter, probe: Probe, block: Block) -> QuantityIden
         [found for line in lines for found in (line.statistic, _recorded(line, probe.snapshot, "statistic"))]
     )
     return QuantityIdentity(
-        parameter=lines[0].parameter, plane=plane or _port(lines[0], block), statistic=statistic
+        parameter=lines[0].parameter,
+        plane=plane or _sideband(key, probe) or _port(lines[0], block),
+        statistic=statistic,
     )
 
 
 def sideband_words(key: BlockParameter, probe: Probe) -> str:
     """Say the sideband of a mixer's noise figure for a title; "" where its lines state none."""
+    return {"DSB": " (double sideband)", "SSB": " (single sideband)"}.get(_sideband(key, probe), "")
+
+
+def _sideband(key: BlockParameter, probe: Probe) -> str:
     stated = {read.line.sideband for read in probe.chain.lines if key_of(read) == key}
     if stated & {"DSB", "both"}:
-        return " (double sideband)"
-    return " (single sideband)" if "SSB" in stated else ""
+        return "DSB"
+    return "SSB" if "SSB" in stated else ""
 
 
 def _one(stated: list[str]) -> str:

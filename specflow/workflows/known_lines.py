@@ -21,7 +21,7 @@ from specflow.model.conditions import ConditionMap, ConditionsSet
 from specflow.model.evidence import EvidenceColumns, EvidenceFile, EvidenceTable, FileKind, ValueColumn
 from specflow.model.requirement import Method, Requirement
 from specflow.model.snapshot import Snapshot
-from specflow.parameters import Dictionary
+from specflow.parameters import SIDEBAND_PLANES, Dictionary
 from specflow.units import convert, converter, parse_unit, tolerance_unit
 from specflow.verification.map_choice import MapChoice
 from specflow.verification.standing import ACCEPTED, StandingRegister
@@ -117,7 +117,8 @@ class _Reader:
                 if unlike:
                     self.notes.append(f"{table.id} {column.name} is left out: another {unlike} than required")
                     continue
-                if read.line.sideband and read.role.figure == "noise_figure":
+                is_mixer = read.line.sideband and read.role.figure == "noise_figure"
+                if is_mixer and column.quantity.plane not in SIDEBAND_PLANES:
                     self.notes.append(
                         f"{table.id} {column.name} does not say its sideband; it is taken as "
                         f"{read.line.sideband}, as the line states"
@@ -126,14 +127,19 @@ class _Reader:
 
     def _unlike(self, read: ReadLine, column: ValueColumn, route: Route) -> str:
         """Name what the line or the requirement on the block and the column both state, and differently."""
+        own, line = column.quantity.plane, read.line.sideband
+        if own in SIDEBAND_PLANES and own != {"": "SSB", "both": "DSB"}.get(line, line):
+            return "sideband"
         child = self._child(read)
         for part in ("plane", "statistic", "polarisation"):
-            if part == "plane" and route.gain:
-                continue  # the other port is what the route is for
+            if part == "plane" and (route.gain or own in SIDEBAND_PLANES):
+                continue  # the other port is what the route is for; a sideband is no port
             wanted = getattr(read.line, part, "") or (
                 getattr(child.quantity, part) if child is not None else ""
             )
             found = getattr(column.quantity, part)
+            if part == "plane" and wanted in SIDEBAND_PLANES:
+                continue
             if wanted and found and code_key(wanted) != code_key(found):
                 return part
         return ""

@@ -324,6 +324,15 @@ def test_a_title_is_found_however_it_is_spaced_and_cased(one: Parameter, space: 
     assert one.key in [candidate.parameter.key for candidate in found]
 
 
+@pytest.mark.parametrize(
+    ("header", "plane"),
+    [("NF DSB (dB)", "DSB"), ("noise figure (SSB)", "SSB"), ("SSB noise figure", "SSB"), ("NF (dB)", "")],
+)
+def test_a_name_that_says_the_sideband_of_a_noise_figure_keeps_it(header: str, plane: str) -> None:
+    found = load_dictionary().match(header)
+    assert [(one.parameter.key, one.plane) for one in found] == [("noise_figure", plane)]
+
+
 def test_the_dictionary_loads_without_the_heavy_libraries() -> None:
     script = (
         "import sys; from specflow.parameters import load_dictionary; load_dictionary().match('NF (dB)');"

@@ -231,6 +231,23 @@ def test_a_share_carries_plane_and_statistic_where_they_are_known(tmp_path: Path
     assert found["MIX-GAIN"].plane == "" and found["IF-NOISE-FIGURE"].plane == ""
 
 
+def test_the_share_of_a_mixer_is_on_the_sideband_that_its_line_states(tmp_path: Path) -> None:
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        budget = store.load().find(Budget, "RX")
+        assert budget is not None
+        stated = {("MIX", "noise_figure"): {"sideband": "SSB"}}
+        lines = tuple(
+            one.model_copy(update=stated.get((one.block, one.parameter), {})) for one in budget.lines
+        )
+        store.apply([editing(budget, lines=lines)], by="A. Invented")
+        preview = preview_allocation(store, "RX", AllocateOptions("equal"))
+    found = {one.child.id: one.child for one in preview.proposals}
+    assert found["MIX-NOISE-FIGURE"].quantity.plane == "SSB"
+    assert "(single sideband)" in found["MIX-NOISE-FIGURE"].title
+    assert found["IF-NOISE-FIGURE"].quantity.plane == ""
+    assert preview.closure.closes is True
+
+
 def _limits(preview: AllocatePreview) -> dict[str, Limit]:
     return {one.child.id: one.given for one in preview.proposals}
 

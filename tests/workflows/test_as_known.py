@@ -89,6 +89,17 @@ def test_evidence_is_used_place_by_place_in_the_order_of_rank(tmp_path: Path) ->
     assert set(found.tables) == {"EV-1", "EV-2"}
 
 
+@pytest.mark.parametrize(("said", "taken"), [("DSB", False), ("SSB", True), ("", True)])
+def test_a_noise_figure_of_the_other_sideband_is_left_out(tmp_path: Path, said: str, taken: bool) -> None:
+    column = a_value_column("NF", quantity=a_quantity("noise_figure", plane=said))
+    table = an_evidence_table("EV-1", block="LNA", values=(column,), conditions=())
+    with receiver.make_store(tmp_path / "rx.specflow") as store:
+        with_evidence(store, [*items(), table], {"EV-1": over_temperature(1.0, 1.3, 1.4)})
+        found = known_budget(store, "RX", AS_OF)
+    assert bool(found.tables) is taken
+    assert any("another sideband" in note for note in found.notes) is not taken
+
+
 def test_what_may_not_count_is_left_out_and_said(tmp_path: Path) -> None:
     with receiver.make_store(tmp_path / "rx.specflow") as store:
         with_evidence(

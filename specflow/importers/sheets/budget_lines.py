@@ -126,6 +126,7 @@ def _line(row: SheetRow, order: int, block: str, group: _Lines, intake: Intake) 
         row.fault(
             "growth", f"{growth:g} is no allowance", "write how much worse it may get, as a positive number"
         )
+    convention = named.plane if named.plane in SIDEBANDS else ""
     line = row.build(
         BudgetLine,
         position=order,
@@ -138,8 +139,8 @@ def _line(row: SheetRow, order: int, block: str, group: _Lines, intake: Intake) 
         correlation_group=row.text("correlation_group"),
         shared=row.one_of("shared", SHARED, "common"),
         growth=growth,
-        sideband=_sideband(row),
-        plane=row.text("plane") or named.plane,
+        sideband=_sideband(row, convention),
+        plane=row.text("plane") or ("" if convention else named.plane),
         statistic=row.text("statistic") or named.statistic,
         maturity=row.choice("maturity", Maturity, Maturity.ESTIMATED),
         source=row.prose("source"),
@@ -153,11 +154,9 @@ def _line(row: SheetRow, order: int, block: str, group: _Lines, intake: Intake) 
     return line
 
 
-def _sideband(row: SheetRow) -> str:
+def _sideband(row: SheetRow, named: str) -> str:
     """Return of which sidebands a noise figure is; a name that says it ("NF DSB") must not be lost or contradicted."""
     written = row.one_of("sideband", SIDEBANDS, "")
-    words = row.text("parameter").upper().replace("(", " ").replace(")", " ").split()
-    named = next((one for one in ("SSB", "DSB") if one in words), "")
     if named and written and named != ("DSB" if written == "both" else written):
         row.fault(
             "sideband",
