@@ -7,16 +7,19 @@ the fail. Who must prove a requirement decides for how many items a point is mis
 from __future__ import annotations
 
 import math
+import shlex
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
 
 import numpy as np
 
 from specflow.conditions import Points
+from specflow.derive import LAW_BY_NAME
 from specflow.limits import LimitContext, evaluate_limit, limit_words
 from specflow.limits.tree import tree_names
 from specflow.model.base import code_key
 from specflow.model.bench_sheet import BenchCondition, BenchPoint
+from specflow.model.conditions import ConditionsSet
 from specflow.model.requirement import Activity, Method, Requirement
 from specflow.model.snapshot import Snapshot
 from specflow.model.verdict import ActivityResult, CloseOut, Label, PointResults, RequirementStatus, Verdict
@@ -113,7 +116,7 @@ class _Requirement:
 
     def collect(self, missing: Missing) -> None:
         """Add the points, and say what of the requirement is left out."""
-        reason = _why_left_out(self._requirement, self._status, self._points)
+        reason = _why_left_out(self._requirement, self._status, self._points) or self._made_of_a_sweep()
         if reason:
             missing.leave_out(self._requirement, reason)
             return
@@ -129,6 +132,21 @@ class _Requirement:
                     self._add(place, activity, missing)
                 else:
                     missing.leave_out(self._requirement, "has failing points, which --retest adds")
+
+    def _made_of_a_sweep(self) -> str:
+        """Say why the quantity cannot be filled in value by value: a ripple is one value of a whole sweep."""
+        requirement = self._requirement
+        conditions = self._snapshot.find(ConditionsSet, requirement.conditions)
+        ranges = [] if conditions is None else [one.name for one in conditions.dimensions if one.span]
+        for law in LAW_BY_NAME.values():
+            swept = next((name for name in law.along if name in ranges), "")
+            whole = law.over == "range" and not law.in_parts
+            if swept and whole and requirement.quantity.parameter in law.gives:
+                return (
+                    f"one value of the whole sweep over {swept.replace('_', ' ')}: attach the sweep and derive it "
+                    f"(specflow derive {shlex.quote(law.name)})"
+                )
+        return ""
 
     def _activity(self, result: ActivityResult) -> Activity:
         known = self._snapshot.activities_of.get(code_key(self._requirement.id), ())

@@ -476,6 +476,22 @@ def test_failing_points_are_left_out_unless_a_retest_is_asked_for(
     assert (point.why, point.item) == (("fails",), "LNA-1")
 
 
+def test_what_is_made_of_a_whole_sweep_is_not_asked_value_by_value(store: ProjectStore) -> None:
+    store.apply(
+        adding(
+            requirement("FLAT-1", "<= 1 dB", "gain_flatness", conditions="SW"),
+            requirement("FLAT-2", "<= 1 dB", "gain_flatness"),
+        ),
+        by="A. B.",
+    )
+    sheet = made(store, requirements=("FLAT-1",))
+    assert not sheet.workbook.points
+    assert list(sheet.workbook.notes) == [
+        "FLAT-1: one value of the whole sweep over frequency: attach the sweep and derive it (specflow derive ripple)"
+    ]
+    assert made(store, requirements=("FLAT-2",)).workbook.points == 12, "at single frequencies it is asked"
+
+
 def test_a_number_of_items_is_asked_of_so_many(store: ProjectStore, tmp_path: Path) -> None:
     store.apply(
         adding(requirement("N-1", ">= 20 dB", conditions=None, provers=Provers(rule="number of", number=2))),
