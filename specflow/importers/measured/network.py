@@ -106,7 +106,9 @@ class _Reading:
         self.said = {**of_network, **said}
         self.settled: SettledNetwork = settle(network, self.said)
         self.network = self.settled.network
-        self.ports = named_ports(network.ports, said, of_network, network.port_modes or network.port_names)
+        names = network.port_modes or network.port_names
+        by_file = "[Mixed-Mode Order]" if network.port_modes else "a comment of the file"
+        self.ports = named_ports(network.ports, said, of_network, names, by_file)
         self.facts: CommentFacts = facts
         self.stated = collect(
             facts.facts, _parted(self.mapping.stated)[1], rest, own_dimensions=context.dimensions

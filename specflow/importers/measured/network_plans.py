@@ -22,6 +22,9 @@ Entry = tuple[int, int]
 #: The range of a plan over all frequencies of the file.
 WHOLE = "whole"
 
+#: What parts the quantities that a person names; a comma before a digit belongs to a mode (D2,3).
+_BETWEEN = re.compile(r";|,(?!\d)")
+
 #: Statistics of a requirement that are judged on the values over frequency themselves.
 _OF_A_TRACE = frozenset({""})
 
@@ -136,7 +139,7 @@ def _add(found: Plans, plan: Plan) -> None:
 def _said(text: str, context: Context, found: Plans) -> list[QuantityIdentity]:
     """Read "gain; return loss at input; isolation from out1 to out2"."""
     quantities = []
-    for part in filter(None, (one.strip() for one in re.split(r"[;,]", text))):
+    for part in filter(None, (one.strip() for one in _BETWEEN.split(text))):
         name, plane = part, ""
         match = re.match(
             r"^(?P<name>.+?)\s+(?:(?:at|of)\s+(?P<at>.+)|from\s+(?P<way>.+))$", part, re.IGNORECASE

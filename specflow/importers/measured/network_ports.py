@@ -62,17 +62,21 @@ class Ports:
 
 
 def named_ports(
-    count: int, person: Mapping[str, str], mapping: Mapping[str, str], comments: Sequence[str]
+    count: int,
+    person: Mapping[str, str],
+    mapping: Mapping[str, str],
+    file: Sequence[str],
+    by_file: str,
 ) -> Ports:
-    """Bring the names of ports together: the person has the last word, then the mapping, then the comments."""
+    """Bring the names of ports together: the person has the last word, then the mapping, then the file."""
     names, by = [""] * count, [""] * count
     for place in range(count):
         for said, who in ((person, "stated by the person"), (mapping, "stated by the mapping")):
             text = next((value for key, value in said.items() if _number(key) == place + 1), "").strip()
             if text not in ("", "?") and not names[place]:  # a proposed mapping has "?" for what nobody named
                 names[place], by[place] = text, who
-        if not names[place] and place < len(comments) and comments[place]:
-            names[place], by[place] = comments[place], "a comment of the file"
+        if not names[place] and place < len(file) and file[place]:
+            names[place], by[place] = file[place], by_file
     return Ports(tuple(names), tuple(by))
 
 

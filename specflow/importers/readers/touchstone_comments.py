@@ -195,7 +195,7 @@ def _port_names(comments: Sequence[Comment], ports: int) -> tuple[str, ...]:
     for comment in comments:
         for match in (*_IS_PORT.finditer(comment.text), *_PORT_IS.finditer(comment.text)):
             number = int(match["number"])
-            name = " ".join(match["name"].split())
+            name = " ".join(match["name"].split()).strip("\"'")
             if 1 <= number <= ports and name and not _A_FIGURE.match(name) and not names[number - 1]:
                 names[number - 1] = name[:60]
     return tuple(names) if any(names) else ()

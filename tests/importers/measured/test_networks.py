@@ -573,3 +573,21 @@ def test_a_requirement_that_leaves_open_which_output_stops_no_file(tmp_path: Pat
     assert "R-1" in left and "the ports 2, 3 are all 'output'" in left and "must name one of them" in left
     table = raw(path, wanted("insertion_loss", "input to port 2"), **names)
     assert planned(table) == [("insertion_loss", "loss", "S21")]
+
+
+def test_a_quantity_between_modes_is_stated_with_their_commas(tmp_path: Path) -> None:
+    path = tmp_path / "a.s4p"
+    rows = "\n".join(" ".join(f"{10 * i + j} 0" for j in range(1, 5)) for i in range(1, 5))
+    path.write_text(
+        "[Version] 2.1\n# MHz S MA\n[Number of Ports] 4\n[Number of Frequencies] 1\n"
+        f"[Mixed-Mode Order] D1,2 D3,4 C1,2 C3,4\n[Network Data]\n5 {rows}\n[End]\n"
+    )
+    table = raw(path, derive="gain from D1,2 to D3,4, return loss at C3,4;isolation from C1,2 to D3,4")
+    assert [one[2] for one in planned(table)] == ["S D3,4 D1,2", "S C3,4 C3,4", "S D3,4 C1,2"]
+    assert {one.header: one.reason for one in table.recognised}["port 1"] == "[Mixed-Mode Order]"
+
+
+def test_the_name_of_a_port_stands_without_its_quotes(tmp_path: Path) -> None:
+    path = tmp_path / "a.s2p"
+    path.write_text(f"! Port[1] = \"in\"\n! Port[2] = 'out'\n# GHz S MA R 50\n{ROWS}")
+    assert planned(raw(path, wanted("gain"))) == [("gain", "gain", "S21")]
