@@ -47,42 +47,58 @@ ReserveOption = Annotated[
     list[str] | None,
     typer.Option(
         "--reserve",
+        metavar="RESERVE",
         help="Keep so much of a parameter back, with its holder: 'noise_figure 0.3 dB Systems' (may be repeated).",
         show_default=False,
     ),
 ]
 FixOption = Annotated[
     list[str] | None,
-    typer.Option("--fix", help="A block that keeps its figures, besides the passive ones (may be repeated).",
-                 show_default=False),
-]  # fmt: skip
+    typer.Option(
+        "--fix",
+        metavar="BLOCK",
+        help="A block that keeps its figures, besides the passive ones (may be repeated).",
+        show_default=False,
+    ),
+]
 FreeOption = Annotated[
     list[str] | None,
     typer.Option(
-        "--free-gain", help="With --least-effort: a block whose gain may move too.", show_default=False
+        "--free-gain",
+        metavar="BLOCK",
+        help="With --least-effort: a block whose gain may move too.",
+        show_default=False,
     ),
 ]
 WeightOption = Annotated[
     list[str] | None,
     typer.Option(
-        "--weight", help="With --least-effort: 'LNA=3' counts its effort three times.", show_default=False
+        "--weight",
+        metavar="BLOCK=N",
+        help="With --least-effort: 'LNA=3' counts its effort three times.",
+        show_default=False,
     ),
 ]
 HandOption = Annotated[
     list[str] | None,
     typer.Option(
         "--by-hand",
+        metavar="LIMIT",
         help="A limit by hand instead of the budget's: 'LNA noise_figure <= 1.4 dB' (may be repeated).",
         show_default=False,
     ),
 ]
 BecauseOption = Annotated[
-    str, typer.Option("--because", help="The reason for what is given by hand.", show_default=False)
+    str,
+    typer.Option(
+        "--because", metavar="WHY", help="The reason for what is given by hand.", show_default=False
+    ),
 ]
 SolveOption = Annotated[
     str,
     typer.Option(
         "--solve",
+        metavar="LINE",
         help="Only solve one line, such as 'LNA gain' or 'position 2 gain', for all limits; nothing is stored.",
         show_default=False,
     ),

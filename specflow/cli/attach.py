@@ -29,7 +29,7 @@ Files = Annotated[
     list[Path],
     typer.Argument(
         help="Measurement files, filled-in test sheets, or folders of them.",
-        metavar="FILE_OR_FOLDER...",
+        metavar="FILE_OR_FOLDER",
         show_default=False,
     ),
 ]
@@ -43,14 +43,19 @@ State = Annotated[
         "column is ('column C=gain in dB'). Repeatable.",
     ),
 ]
-Sheets = Annotated[list[str], typer.Option("--sheet", help="Read this sheet only. Repeatable.")]
+Sheets = Annotated[
+    list[str], typer.Option("--sheet", metavar="NAME", help="Read this sheet only. Repeatable.")
+]
 MappingFile = Annotated[
-    Path | None, typer.Option("--mapping", help="A mapping (TOML) that settles the columns; it is kept.")
+    Path | None,
+    typer.Option("--mapping", metavar="FILE", help="A mapping (TOML) that settles the columns; it is kept."),
 ]
 Propose = Annotated[
     Path | None,
     typer.Option(
-        "--propose-mapping", help="Write a mapping as it was understood, to be edited; store nothing."
+        "--propose-mapping",
+        metavar="FILE",
+        help="Write a mapping as it was understood, to be edited; store nothing.",
     ),
 ]
 Supersedes = Annotated[
@@ -65,7 +70,9 @@ Beside = Annotated[
 Resolves = Annotated[
     str,
     typer.Option(
-        "--resolves", help="With --supersedes: the discrepancy report of a fail and its disposition."
+        "--resolves",
+        metavar="REPORT",
+        help="With --supersedes: the discrepancy report of a fail and its disposition.",
     ),
 ]
 Keep = Annotated[

@@ -36,6 +36,7 @@ AtOption = Annotated[
     str,
     typer.Option(
         "--at",
+        metavar="POINT",
         help="The condition point to show: its number, or words of its conditions such as '30 GHz, +55 °C'; "
         "default: the worst.",
         show_default=False,
@@ -45,6 +46,7 @@ MethodOption = Annotated[
     list[str] | None,
     typer.Option(
         "--method",
+        metavar="METHOD",
         help="How to treat tolerances: nominal, worst-case, rss or monte-carlo (may be repeated); default: all.",
         show_default=False,
     ),
@@ -53,17 +55,19 @@ TrialsOption = Annotated[
     int | None,
     typer.Option(
         "--trials",
+        metavar="N",
         help="Specimens of the Monte Carlo run; default: 20000, fewer over very many condition points.",
         min=1,
         show_default=False,
     ),
 ]
-SeedOption = Annotated[int, typer.Option("--seed", help="Seed of the Monte Carlo run.", min=0)]
+SeedOption = Annotated[int, typer.Option("--seed", metavar="N", help="Seed of the Monte Carlo run.", min=0)]
 
 SetOption = Annotated[
     list[str] | None,
     typer.Option(
         "--set",
+        metavar="EDIT",
         help="Edit a line: 'POSITION PARAMETER = VALUE', such as '4 noise_figure = 1.7 dB ± 0.2 dB' (may be repeated).",
         show_default=False,
     ),
@@ -72,13 +76,19 @@ SigmaOption = Annotated[
     float | None,
     typer.Option(
         "--sigma",
+        metavar="K",
         help="Root sum of squares at so many standard deviations; without it as the tolerances are stated.",
         show_default=False,
     ),
 ]
 ReasonOption = Annotated[
     str,
-    typer.Option("--reason", help="Why the budget is edited; it stays in the history.", show_default=False),
+    typer.Option(
+        "--reason",
+        metavar="WHY",
+        help="Why the budget is edited; it stays in the history.",
+        show_default=False,
+    ),
 ]
 
 

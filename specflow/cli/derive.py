@@ -25,7 +25,7 @@ if TYPE_CHECKING:
 
 LawArgument = Annotated[
     str,
-    typer.Argument(help="The law; without one, all laws are listed.", metavar="[LAW]", show_default=False),
+    typer.Argument(help="The law; without one, all laws are listed.", metavar="LAW", show_default=False),
 ]
 From = Annotated[
     list[str], typer.Option("--from", metavar="EV-N", help="The table to derive from. Repeatable.")
@@ -56,9 +56,16 @@ Gives = Annotated[
         "--gives", metavar="PARAMETER", help="The parameter of the result; default: that of the column."
     ),
 ]
-Plane = Annotated[str, typer.Option("--plane", help="The plane of the result; default: that of the column.")]
-Statistic = Annotated[str, typer.Option("--statistic", help="The statistic of the result.")]
-Polarisation = Annotated[str, typer.Option("--polarisation", help="The polarisation of the result.")]
+Plane = Annotated[
+    str,
+    typer.Option("--plane", metavar="PLANE", help="The plane of the result; default: that of the column."),
+]
+Statistic = Annotated[
+    str, typer.Option("--statistic", metavar="STATISTIC", help="The statistic of the result.")
+]
+Polarisation = Annotated[
+    str, typer.Option("--polarisation", metavar="POLARISATION", help="The polarisation of the result.")
+]
 For = Annotated[
     str,
     typer.Option("--for", metavar="REQUIREMENT", help="Take the quantity of the result from a requirement."),
@@ -72,7 +79,7 @@ Proposed = Annotated[
 Explain = Annotated[
     str, typer.Option("--explain", metavar="LAW", help="Explain a law: formula, validity, source.")
 ]
-Reason = Annotated[str, typer.Option("--reason", help="Why; it is kept with the derivation.")]
+Reason = Annotated[str, typer.Option("--reason", metavar="WHY", help="Why; it is kept with the derivation.")]
 
 
 def derive(

@@ -15,6 +15,7 @@ OutputOption = Annotated[
     typer.Option(
         "--output",
         "-o",
+        metavar="FILE",
         help="The file to write, - for stdout; default: named after the project, in this folder.",
         show_default=False,
     ),
@@ -24,6 +25,7 @@ FormatOption = Annotated[
     typer.Option(
         "--format",
         "-f",
+        metavar="FORMAT",
         help="xlsx, html, csv or json; default: as the file's name ends, else xlsx.",
         show_default=False,
     ),
@@ -32,6 +34,7 @@ TableOption = Annotated[
     list[str] | None,
     typer.Option(
         "--table",
+        metavar="TABLE",
         help="Only this table: summary, matrix, points, evidence, findings, budgets or about (may be repeated; csv "
         "holds one).",
         show_default=False,

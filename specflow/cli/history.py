@@ -14,7 +14,8 @@ IdArgument = Annotated[
     typer.Argument(help="Only what has this id; default: everything.", metavar="ID", show_default=False),
 ]
 LastOption = Annotated[
-    int | None, typer.Option("--last", min=1, help="Only the newest so many changes.", show_default=False)
+    int | None,
+    typer.Option("--last", metavar="N", min=1, help="Only the newest so many changes.", show_default=False),
 ]
 
 

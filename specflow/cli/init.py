@@ -14,7 +14,10 @@ NameArgument = Annotated[
     str, typer.Argument(help="What the project is called, and its files.", show_default=False)
 ]
 FolderOption = Annotated[
-    Path, typer.Option("--folder", help="Where to make them; default: this folder.", show_default=False)
+    Path,
+    typer.Option(
+        "--folder", metavar="FOLDER", help="Where to make them; default: this folder.", show_default=False
+    ),
 ]
 NoTemplateOption = Annotated[bool, typer.Option("--no-template", help="Make no workbook template.")]
 

@@ -23,11 +23,15 @@ BudgetArgument = Annotated[
 SerialOption = Annotated[
     str,
     typer.Option(
-        "--serial", help="One system as built: its item, by id or serial number.", show_default=False
+        "--serial",
+        metavar="ITEM",
+        help="One system as built: its item, by id or serial number.",
+        show_default=False,
     ),
 ]
 ConfidenceOption = Annotated[
-    float, typer.Option("--confidence", help="With which the predicted margin is kept, one-sided.")
+    float,
+    typer.Option("--confidence", metavar="PART", help="With which the predicted margin is kept, one-sided."),
 ]
 RecordOption = Annotated[
     bool, typer.Option("--record", help="Record the result as evidence of method analysis, with its sources.")

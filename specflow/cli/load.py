@@ -36,12 +36,17 @@ PublishedOption = Annotated[
 BlockOption = Annotated[
     str,
     typer.Option(
+        "--block",
+        metavar="BLOCK",
         help="With --published: the block the limits are on; else the one without a parent.",
         show_default=False,
     ),
 ]
 PrefixOption = Annotated[
-    str, typer.Option(help="With --published: what goes before every id.", show_default=False)
+    str,
+    typer.Option(
+        "--prefix", metavar="TEXT", help="With --published: what goes before every id.", show_default=False
+    ),
 ]
 RemoveGoneOption = Annotated[
     bool,

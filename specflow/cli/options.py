@@ -22,12 +22,15 @@ ProjectOption = Annotated[
     typer.Option(
         "--project",
         "-p",
+        metavar="PROJECT",
         help=f"The project: a .specflow file or a database URL. Default: ${PROJECT_VARIABLE}, else the only "
         ".specflow file in this folder.",
     ),
 ]
 JsonOption = Annotated[bool, typer.Option("--json", help="Write JSON to stdout instead of a table.")]
-ByOption = Annotated[str, typer.Option("--by", help="Who decides; default: the name of this account.")]
+ByOption = Annotated[
+    str, typer.Option("--by", metavar="NAME", help="Who decides; default: the name of this account.")
+]
 YesOption = Annotated[bool, typer.Option("--yes", "-y", help="Accept without asking.")]
 DryRunOption = Annotated[bool, typer.Option("--dry-run", help="Show what would happen; store nothing.")]
 TakeRestOption = Annotated[
@@ -36,7 +39,12 @@ TakeRestOption = Annotated[
 ]
 AsOfOption = Annotated[
     str,
-    typer.Option("--as-of", help="Judge as of this date (YYYY-MM-DD); default: today.", show_default=False),
+    typer.Option(
+        "--as-of",
+        metavar="DATE",
+        help="Judge as of this date (YYYY-MM-DD); default: today.",
+        show_default=False,
+    ),
 ]
 
 

@@ -16,7 +16,12 @@ IdsArgument = Annotated[
 ]
 LabelOption = Annotated[
     str,
-    typer.Option("--label", help="Only requirements in this state, such as 'failing'.", show_default=False),
+    typer.Option(
+        "--label",
+        metavar="STATE",
+        help="Only requirements in this state, such as 'failing'.",
+        show_default=False,
+    ),
 ]
 
 

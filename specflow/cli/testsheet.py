@@ -22,10 +22,16 @@ Items = Annotated[
         "--item", "-i", metavar="I", help="What is missing on this item (id or serial). Repeatable."
     ),
 ]
-Gate = Annotated[str, typer.Option("--gate", help="Only activities that are planned for this review.")]
+Gate = Annotated[
+    str, typer.Option("--gate", metavar="NAME", help="Only activities that are planned for this review.")
+]
 Stage = Annotated[
     str,
-    typer.Option("--stage", help="Only activities of this stage: development, qualification, acceptance."),
+    typer.Option(
+        "--stage",
+        metavar="STAGE",
+        help="Only activities of this stage: development, qualification, acceptance.",
+    ),
 ]
 Retest = Annotated[bool, typer.Option("--retest", help="Points that fail, too, to be measured again.")]
 

@@ -34,12 +34,15 @@ AlternativesOption = Annotated[
     str,
     typer.Option(
         "--alternatives",
+        metavar="REQUIREMENT",
         help="Instead of a change: compare the budgets of this requirement side by side.",
         show_default=False,
     ),
 ]
 KeepOption = Annotated[bool, typer.Option("--keep", help="Store the changes after they were looked at.")]
-ReasonOption = Annotated[str, typer.Option("--reason", help="With --keep: why.", show_default=False)]
+ReasonOption = Annotated[
+    str, typer.Option("--reason", metavar="WHY", help="With --keep: why.", show_default=False)
+]
 
 
 def try_(

@@ -149,6 +149,10 @@ def test_every_command_has_help_that_begins_as_the_list_says(command: Command, e
     assert done.code == ExitCode.CLEAN
     assert "[OPTIONS]" in done.out and summary.rstrip(".") in " ".join(done.out.split())
     assert summary in " ".join(command("--help").out.split())
+    options = [line for line in done.out.splitlines() if line.lstrip().startswith("-")]
+    assert options and not any("<" in line.split("  ")[1] for line in options), (
+        "a value has a name, not a type"
+    )
 
 
 def test_a_command_that_is_misspelt_is_told_with_what_is_near(command: Command) -> None:
