@@ -55,7 +55,7 @@ def patched_size(content: bytes, part: str, size: int) -> bytes:
         (OLE + b"\0" * 600 + "Workbook".encode("utf-16-le"), "damaged"),
         (OLE + b"\0" * 600 + "WordDocument".encode("utf-16-le"), "there is no workbook"),
         (OLE + b"\0" * 600 + "EncryptedPackage".encode("utf-16-le"), "protected by a password"),
-        (b"%PDF-1.7\n\x00\x01\x02", "this is no text file"),
+        (b"%PDF-1.7\n\x00\x01\x02", "no workbook, and no text either"),
         (b"PK\x03\x04", "zip directory cannot be read"),
         (b"PK\x05\x06" + b"\0" * 18, "no workbook"),
     ],
