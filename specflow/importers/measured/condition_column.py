@@ -4,6 +4,9 @@ from __future__ import annotations
 
 from dataclasses import replace
 
+import numpy as np
+from numpy.typing import NDArray
+
 from specflow.conditions import (
     Comparison,
     KnownDimension,
@@ -127,6 +130,26 @@ def is_condition(dimension: KnownDimension, quantity: NamedQuantity, context: Co
     if dimension.name in _LEVELS:
         return used and not required
     return used or not required
+
+
+def is_bare_level(
+    dimension: KnownDimension, quantity: NamedQuantity, heading: Heading, context: Context
+) -> bool:
+    """Whether "Power (W)" or "Level (dBm)" may be a setting or a result: no project uses it, and no steps show it."""
+    if dimension.name not in _LEVELS or quantity.candidates or dimension.name in context.dimensions:
+        return False
+    numbers = heading.table.cells(heading.header.column).numbers_at(heading.table.rows)
+    known = numbers[np.isfinite(numbers)]
+    return not len(known) or not _are_settings(known)
+
+
+def _are_settings(numbers: NDArray[np.float64]) -> bool:
+    """Whether numbers are those of a sweep in equal steps, or a few that return."""
+    levels = np.unique(numbers)
+    if 2 * len(levels) <= len(numbers):
+        return True
+    steps = np.diff(levels)
+    return len(levels) > 2 and bool(np.ptp(steps) <= 1e-6 * np.abs(levels).max())
 
 
 def is_open(dimension: KnownDimension, quantity: NamedQuantity, context: Context, table: FoundTable) -> bool:

@@ -12,7 +12,8 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from specflow.conditions import Comparison, find_dimension, is_unlocated_temperature
+from specflow.conditions import Comparison, find_dimension
+from specflow.importers.measured.condition_column import is_temperature
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.header_cells import HeaderCell
 from specflow.importers.measured.header_text import known_unit, read_header
@@ -22,6 +23,7 @@ from specflow.importers.measured.result import Question, Role
 from specflow.importers.measured.roles import role_of_words
 from specflow.importers.measured.statements import is_reading
 from specflow.importers.measured.tables import FoundTable, table_below
+from specflow.importers.measured.unit_source import FoundUnit
 from specflow.importers.readers import Grid, Value, is_blank
 from specflow.parameters import suits
 
@@ -137,7 +139,7 @@ def _number_row(grid: Grid, top: int, row: int, context: Context) -> NumberRow |
 def _is_named(label: str, context: Context) -> bool:
     """Whether a corner says what runs down or across."""
     parts = [read_header(part) for part in _corner_parts(label)]
-    if any(find_dimension(one.name) or is_unlocated_temperature(one.name) for one in parts):
+    if any(find_dimension(one.name) or is_temperature(one, FoundUnit(one.unit)) for one in parts):
         return True
     words = read_header(label)  # "Limit", "Mean" and the like stand before readings, not over them
     return bool(words.unit) and role_of_words(words) is None and context.recognises(words.text)
@@ -238,7 +240,7 @@ def _named_dimension(text: str) -> tuple[str, str] | None:
     dimension = find_dimension(parts.name)
     if dimension is not None:
         return dimension.name, parts.unit
-    return (UNLOCATED, parts.unit) if is_unlocated_temperature(parts.name) else None
+    return (UNLOCATED, parts.unit) if is_temperature(parts, FoundUnit(parts.unit)) else None
 
 
 def _unit_dimension(grid: Grid, found: NumberRow) -> tuple[str, str] | None:

@@ -30,6 +30,7 @@ from specflow.importers.measured.directions import cosine_of
 from specflow.importers.measured.formats import Format, format_of, header_of, is_plain_head, phase_header
 from specflow.importers.measured.header_cells import HeaderCell
 from specflow.importers.measured.header_text import header_key, known_unit, read_header
+from specflow.importers.measured.levels import field_of_detector, is_of_receiver, other_level
 from specflow.importers.measured.mapping import ColumnMapping, LayoutMapping
 from specflow.importers.measured.pairing import of_their_values, uncertainty_column, without_doubles
 from specflow.importers.measured.placeholders import only_mark
@@ -45,7 +46,16 @@ from specflow.importers.measured.value_column import mapped_value, named_value, 
 from specflow.units import compatible, parse_unit
 
 _READING_AS_TEXT = re.compile(r"^\s*[<>≤≥]\s*[+\-−]?[0-9]")
+_SIZE = r"(?:\d+\.?\d*|\.\d+)(?:[eE][+\-]?\d+)?"
+_NUMBER = rf"[+\-−]?{_SIZE}"
+_TWO_NUMBERS = re.compile(
+    rf"\(?{_NUMBER}\s*[+\-−]\s*(?:{_SIZE}\s*[ij]|[ij]\s*\*?\s*{_SIZE})\)?|"  # 0.9-0.5j
+    rf"\(\s*{_NUMBER}\s*(?:dB)?\s*[,;]\s*{_NUMBER}\s*(?:°|deg|rad)?\s*\)|"  # (-3.0dB,-45°)
+    rf"{_NUMBER}\s*(?:dB)?\s*[,;/∠]\s*{_NUMBER}\s*(?:°|deg)"  # 0.9 ∠ -45°
+)
 _MOST_TEXTS = 50
+#: Headers of a column whose quantity stands in the rows.
+_PLAIN_HEADS = frozenset(("value", "values", "reading", "result", "measured", "measurement", "data"))
 
 
 def read_meanings(
@@ -151,6 +161,9 @@ class _Reader:
 
     def _by_words(self, heading: Heading) -> ColumnMeaning:
         parts = heading.parts
+        field = field_of_detector(parts.name, heading.unit().unit)
+        if field is not None:
+            return self._field(heading, field)
         raw = scattering_header(parts.text)
         if raw is not None:
             return self._scattering(heading, raw)
@@ -168,6 +181,11 @@ class _Reader:
         quantity = name_quantity(parts, unit.unit, self._context.dictionary, self._context.planes)
         if dimension is not None and dimension.name == "time" and not unit.unit and self._is_clock(heading):
             return heading.means(Role.REMARK, "a time of day; kept as a remark")
+        if dimension is not None and (other := other_level(dimension, unit.unit, self._context.dictionary)):
+            return heading.ask_parameter(*other)
+        if dimension is not None and is_of_receiver(dimension, parts.name, self._table.headers):
+            remedy = f'--state "column {heading.letter}=not read", or RBW as its header; --state bandwidth=... holds for all'
+            return heading.ask("may be the bandwidth of the receiver, or that of a channel", remedy)
         if dimension is not None and is_bare_level(dimension, quantity, heading, self._context):
             column = f"column {heading.letter}"
             remedy = f'--state "{column}=condition" or "{column}=PARAMETER", or its role in a mapping'
@@ -201,6 +219,14 @@ class _Reader:
         if is_plain_head(parts.name) and self._stated.text("format"):
             return self._formatted(heading, unit)
         return self._unknown(heading)
+
+    def _field(self, heading: Heading, statistic: str) -> ColumnMeaning:
+        """A reading of a receiver that only its unit names: dBµV/m is a field strength."""
+        parameter = self._context.dictionary.get("field_strength")
+        assert parameter is not None
+        unit, named = heading.unit(), NamedQuantity(statistic=statistic)
+        reason = f"a level in {unit.unit} is a field strength"
+        return value_of(heading, parameter, named, unit, self._context, self._stated, reason)
 
     def _scattering(self, heading: Heading, raw: ScatteringHeader) -> ColumnMeaning:
         """An entry as recorded: no gain and no return loss, before somebody says which port is what."""
@@ -273,6 +299,10 @@ class _Reader:
         given = [one for one, unit in units if cell in unit.source or unit.by_row == heading.header.column]
         if any(self._is_named(one) for one in given):
             return heading.means(Role.NOT_READ, "it holds the units of another column")
+        if given and not any(header_key(one.text) in _PLAIN_HEADS for one in given):
+            return heading.means(
+                Role.NOT_READ, f"it holds the units of {given[0].line}, which names no quantity"
+            )
         if given or any(cell in unit.problem for _, unit in units):
             remedy = "put each quantity into a column of its own, with its unit in the header"
             return heading.ask("holds units: a table with the quantity in the rows is not read", remedy)
@@ -305,6 +335,11 @@ class _Reader:
         places = self._table.rows - self._table.first_row
         texts = [str(cells.value(row)) for row in cells.odd[:_MOST_TEXTS]]
         if not cells.numeric[places].any() and not any(map(_READING_AS_TEXT.match, texts)):
+            if texts and all(map(_TWO_NUMBERS.fullmatch, texts)):
+                remedy = 'export the two parts as columns of their own, or role = "not read" in a mapping'
+                return heading.ask(
+                    f"each cell holds two numbers ({texts[0][:40]}): no reading is taken of them", remedy
+                )
             return heading.means(Role.REMARK, "words that name no condition; kept as a remark")
         item, pattern = self._item_in(heading.header.text)
         if item:
