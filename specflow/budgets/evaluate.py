@@ -156,6 +156,10 @@ def _notes(chain: Chain, requirements: Sequence[Requirement], outputs: Sequence[
     needs_source = names & {"noise_floor", "noise_density", "sensitivity", "refsens", "sfdr"}
     if needs_source and budget.noise_source is None and not has_source:
         notes.append("the source is taken at 290 K")
+    if "sfdr" in names:
+        notes.append(
+            "the spurious-free dynamic range is 2/3 (IIP3 - noise floor): no signal-to-noise ratio is taken off"
+        )
     notes += _image_notes(chain)
     if names & {"ip1db", "op1db", "output_backoff"}:
         notes.append("the compression of a cascade is an approximation, good to about 0.5 dB")

@@ -252,6 +252,12 @@ def _line_notes(budget: Budget) -> list[str]:
         for line in budget.lines
         if _asked(line) & {DRIVE, DRIVEN} and counts[line.position] > 1
     ]
-    return [*arrays, *driven] + [
+    alike = {"per element": "as independent of each other", "common": "as the same in all"}
+    added = [
+        f"{line.place}: what {counts[line.position]} elements contribute is taken {alike[line.shared]}"
+        for line in budget.lines
+        if budget.law in (Law.ROOT_SUM_OF_SQUARES, Law.POWER_SUM) and counts[line.position] > 1
+    ]
+    return [*arrays, *driven, *added] + [
         f"{line.place}: growth allowance of {line.growth:g} taken off" for line in budget.lines if line.growth
     ]

@@ -50,6 +50,9 @@ class Combination(StrEnum):
     LISTED = "listed rows"  # the n-th values of the listed dimensions belong together
 
 
+_ABSOLUTE_ZERO = {"°C": -273.15, "K": 0.0}
+
+
 class Span(Document):
     """A range of a dimension, in its unit.
 
@@ -110,6 +113,14 @@ class Dimension(Document):
             raise ValueError(
                 f"{self.name}: a tolerance in percent is below 100 % and belongs to values, not to a range"
             )
+        return self
+
+    @model_validator(mode="after")
+    def _no_temperature_is_below_absolute_zero(self) -> Self:
+        zero = _ABSOLUTE_ZERO.get(self.unit)
+        ends = self.values if self.span is None else (self.span.low, self.span.high)
+        if zero is not None and self.name.startswith("temperature") and any(end < zero for end in ends):
+            raise ValueError(f"{self.name}: {min(ends):g} {self.unit} is below absolute zero")
         return self
 
     @model_validator(mode="after")

@@ -338,7 +338,8 @@ def _rss_ways(found: Rss, k: float | None) -> list[WayOutcome]:
 
 
 def _refused(way: Way, nominal: WayOutcome, error: CalculationError) -> WayOutcome:
-    reason = f"{error.message}; {error.hint}" if error.hint else error.message
+    place = error.where.partition(", ")[2]  # behind the budget, which the table is of
+    reason = "; ".join(filter(None, (f"{place}: {error.message}" if place else error.message, error.hint)))
     return WayOutcome(way, nominal.requirement, nominal.parameter, refused=reason, assumes=_ASSUMES[way])
 
 

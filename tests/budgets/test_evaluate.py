@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from typing import Literal
+
 import numpy as np
 import pytest
 
@@ -12,7 +14,7 @@ from specflow.model.budget import Budget, Reserve
 from specflow.model.budget_line import ConditionTable, Drift
 from specflow.model.conditions import ConditionMap, Span
 from specflow.parameters import load_dictionary
-from tests.budgets.chains import POZAR_10_2, a_chain, project_of
+from tests.budgets.chains import POZAR_10_2, a_chain, a_position, project_of
 from tests.builders import (
     a_budget_line,
     a_conditions_set,
@@ -234,6 +236,23 @@ def test_error_vectors_of_several_kinds_combine_by_root_of_squares() -> None:
         id="B-1", requirements=("R-1",), quantity=a_quantity("evm"), law="root sum of squares", lines=lines
     )
     assert result_of(budget, limit=at_most(4, "%")).of("evm").result == pytest.approx(2.96, abs=5e-3)
+
+
+@pytest.mark.parametrize(
+    ("shared", "one", "said"),
+    [("per element", 0.5, "independent of each other"), ("common", 4.0, "the same in all")],
+)
+def test_how_errors_of_elements_add_is_said(
+    shared: Literal["per element", "common"], one: float, said: str
+) -> None:
+    lines = (a_budget_line(1, "A", "evm", 4.0, unit="%", shared=shared),)
+    budget = Budget(
+        id="B-1", requirements=("R-1",), quantity=a_quantity("evm"), law="root sum of squares", lines=lines,
+        positions=(a_position(1, "A", count=64),),
+    )  # fmt: skip
+    found = result_of(budget, limit=at_most(8, "%"))
+    assert found.of("evm").result == pytest.approx(one)
+    assert any("64 elements" in note and said in note for note in found.notes)
 
 
 def test_power_sum_of_two_carriers() -> None:

@@ -47,6 +47,14 @@ def a_set(*dimensions: Dimension, **fields: object) -> ConditionsSet:
         (lambda: Dimension(name="x", values=(1,), rule=MatchingRule.OUTWARD), "no outward side"),
         (lambda: Dimension(name="x", values=(1,), tolerance=100, tolerance_is_percent=True), "below 100 %"),
         (lambda: SWEEP.model_validate({**SWEEP.model_dump(), "rule": MatchingRule.ANYWHERE}), "has no step"),
+        (
+            lambda: Dimension(name="temperature_case", unit="°C", values=(-300, 20)),
+            "-300 °C is below absolute zero",
+        ),
+        (
+            lambda: Dimension(name="temperature_ambient", unit="K", span=Span(low=-5, high=20, step=5)),
+            "-5 K is below absolute zero",
+        ),
         (lambda: a_set(FREQUENCY, FREQUENCY), "appears twice"),
         (lambda: a_set(ENDS), "states no step"),
         (lambda: a_set(SWEEP, combination=Combination.CORNERS), "drop its step"),

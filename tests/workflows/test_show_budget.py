@@ -89,6 +89,17 @@ def test_one_way_that_cannot_be_gone_is_an_error_among_others_it_is_told(tmp_pat
         assert {one.way for one in shown.outcome.ways if not one.refused} == {Way.NOMINAL, Way.WORST_CASE}
 
 
+def test_a_tolerance_that_no_block_can_have_is_refused_by_its_line() -> None:
+    wide = receiver.tolerances(receiver.a_receiver(), amount=20.0)
+    refused = [one.refused for one in receiver.outcome(wide).ways if one.refused]
+    assert refused and all(" (position " in one.partition(": the tolerance takes ")[0] for one in refused)
+
+
+def test_a_dynamic_range_says_that_no_signal_to_noise_ratio_is_taken_off() -> None:
+    notes = receiver.outcome(how=NOMINAL, names=("sfdr",)).notes
+    assert any("no signal-to-noise ratio is taken off" in note for note in notes)
+
+
 def test_every_step_is_told(store: ProjectStore) -> None:
     told: list[str] = []
     show_budget(store, "B-RX", how=HowToCompute(trials=1000), step=told.append)
