@@ -130,4 +130,4 @@ def value_text(grid: Grid, row: int, column: int, value: Value, key: str) -> str
     if odd is not None and odd.kind is OddKind.UNIT_FORMAT:
         return f"{text} {odd.unit}"
     unit = read_header(key).unit
-    return f"{text} {unit}" if unit else text
+    return f"{text} {unit}" if unit and known_unit(unit) is not None else text

@@ -18,6 +18,18 @@ _COVERAGE = re.compile(rf"[(\[]\s*{_FACTOR}\s*[)\]]|[,;]?\s*\b{_FACTOR}", re.IGN
 _PLUS_MINUS = re.compile(r"^(?:±|\+/-)\s*(?=\w)")
 _PLACE = re.compile(r"\s*@\s*(?P<place>.+)$")
 _TAIL = re.compile(r"^(?P<name>.*\S)\s+(?P<unit>°\s?[CFK]|[^\s\w]*d[Bb]\S*|\S*Hz|\S*[WVA]|%|deg\w*|K|ppm)$")
+#: Nouns of which a single letter behind them is the name: "Channel A" is no current.
+_LETTERED = re.compile(
+    r"(?:channel|chan|ch|trace|marker|mkr|port|sensor|path|antenna|beam|run|side|group|set|receiver|input|output|site|"
+    r"class|type|variant|version|option)\s+[A-Z]",
+    re.IGNORECASE,
+)
+#: What a record calls the part that holds the rest: "conditions.frequency (GHz)", "results.gain".
+_PART_OF_RECORD = re.compile(
+    r"^(?:conditions?|results?|settings?|set_?up|environment|data|measurements?|measured|values?|readings?|parameters?)"
+    r"\.(?=[^\W\d])",
+    re.IGNORECASE,
+)
 _WORDS_NOT_UNITS = frozenset(
     [
         "min",
@@ -62,7 +74,7 @@ def read_header(text: str) -> HeaderText:
     """Take a header apart: "Gain @ antenna face (dB)", "EIRP / dBm", "f, GHz", "U (dB), k=2", "Temp °C"."""
     whole = " ".join(text.split())
     rest, k = without_coverage(_FOOTNOTE_MARK.sub("", whole))
-    rest, scale = _without_scale(rest)
+    rest, scale = _without_scale(_PART_OF_RECORD.sub("", rest))
     rest, unit, odd, bracketed = _without_brackets(rest)
     place = _PLACE.search(rest)
     found = place["place"].strip() if place else ""
@@ -141,6 +153,8 @@ def _resembles_unit(text: str) -> bool:
 
 def _without_tail(text: str) -> tuple[str, str]:
     """Cut a unit off the end: "EIRP / dBm", "f, GHz", "Gain in dB", "gain_db", "Temp °C"."""
+    if _LETTERED.fullmatch(text.strip()):
+        return text, ""
     unit = split_header(text).unit
     if unit and text.casefold().endswith(unit.casefold()) and unit.casefold() not in _WORDS_NOT_UNITS:
         name = re.sub(r"(\bin|[,/_])\s*$", "", text[: -len(unit)].rstrip())

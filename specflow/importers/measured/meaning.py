@@ -184,7 +184,7 @@ class _Reader:
         if dimension is not None and (other := other_level(dimension, unit.unit, self._context.dictionary)):
             return heading.ask_parameter(*other)
         if dimension is not None and is_of_receiver(dimension, parts.name, self._table.headers):
-            remedy = f'--state "column {heading.letter}=not read", or RBW as its header; --state bandwidth=... holds for all'
+            remedy = f'--state "column {heading.letter}=not read" and bandwidth=..., or RBW as its header'
             return heading.ask("may be the bandwidth of the receiver, or that of a channel", remedy)
         if dimension is not None and is_bare_level(dimension, quantity, heading, self._context):
             column = f"column {heading.letter}"

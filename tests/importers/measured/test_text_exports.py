@@ -4,9 +4,10 @@ from __future__ import annotations
 
 from pathlib import Path
 
+import numpy as np
 import pytest
 
-from tests.importers.measured.make import SAID, low, measure, one_table, questions, taken, text
+from tests.importers.measured.make import SAID, low, measure, one_table, questions, rejected, taken, text
 
 
 def test_settings_that_say_nothing_of_the_readings_are_named_once(tmp_path: Path) -> None:
@@ -76,3 +77,47 @@ def test_entries_of_a_scattering_matrix_are_raw(
 def test_a_form_that_its_unit_contradicts_is_asked_about(tmp_path: Path) -> None:
     path = text(tmp_path / "a.csv", '"Freq [GHz]","dB(S(2,1)) [deg]"\n27.5,0.5\n28.0,0.25\n')
     assert "B1" in questions(one_table(path))
+
+
+def test_the_letter_of_a_channel_is_no_unit_and_its_unit_column_asks_nothing(tmp_path: Path) -> None:
+    lines = [
+        "Time;Channel A;Unit",
+        "09:00:01;12,31;dBm",
+        "09:00:02;17,02;mW",
+        "09:00:03;OVER;dBm",
+        "09:00:04;1,232;dBm",
+    ]
+    path = text(tmp_path / "log.csv", "\n".join(lines))
+    assert [one.cell for one in one_table(path).questions] == ["B1"]
+    table = taken(one_table(path, stated={**SAID, "column B": "output_power"}))
+    assert low(table, "Channel A") == pytest.approx([12.31, 12.3096, np.nan, 1.232], abs=1e-4, nan_ok=True)
+    assert "B4" in rejected(table)
+
+
+def test_the_parts_of_a_record_name_no_quantity(tmp_path: Path) -> None:
+    record = '{"sn": "LNA-1", "conditions": {"frequency": {"value": 28, "unit": "GHz"}}, "results": {"gain_db": 24.5}}'
+    table = taken(
+        one_table(text(tmp_path / "a.jsonl", f"{record}\n{record.replace('28', '29').replace('.5', '')}"))
+    )
+    assert low(table, "gain") == [24.5, 24]
+    assert table.columns is not None and table.columns.conditions.numeric["frequency"].tolist() == [28, 29]
+
+
+def test_a_field_strength_is_known_by_its_unit_and_a_level_in_dbc_is_asked_about(tmp_path: Path) -> None:
+    lines = ["Frequency (MHz)\tQuasiPeak (dBµV/m)\tBandwidth (kHz)", "31.4\t28.4\t120", "125\t---\t9"]
+    path = text(tmp_path / "final.txt", "\n".join(lines))
+    assert [one.cell for one in one_table(path).questions] == ["C1"]
+    table = taken(one_table(path, stated={**SAID, "column C": "not read"}))
+    assert table.document is not None
+    quantity = table.document.values[0].quantity
+    assert (quantity.parameter, quantity.statistic) == ("field_strength", "quasi-peak")
+    spurs = text(tmp_path / "spurs.csv", "Offset (Hz),Level (dBc)\n1E5,-78\n2E5,-80\n3E5,-82\n")
+    assert "no power" in questions(one_table(spurs)) and "spurious_relative" in questions(one_table(spurs))
+
+
+@pytest.mark.parametrize("cell", ["(-3.0e+00dB,-4.5e+01°)", "0.9-0.5j", "(0.9;45)", "0.9 ∠ -45°"])
+def test_two_numbers_in_a_cell_become_no_remark(tmp_path: Path, cell: str) -> None:
+    path = text(
+        tmp_path / "a.txt", f"Frequency (Hz)\tV(out)/V(in)\tGain (dB)\n1e3\t{cell}\t2\n2e3\t{cell}\t3\n"
+    )
+    assert "two numbers" in questions(one_table(path))
