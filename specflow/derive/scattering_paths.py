@@ -58,22 +58,28 @@ def phase_imbalance(samples: Samples) -> Outcome:
 
 def _matrix(samples: Samples) -> Complexes:
     """The matrix (n, p, p) of a network table, whose columns are the roles: "S12 magnitude", "S12 angle" ..."""
-    parts: dict[tuple[int, int], dict[str, str]] = {}
-    for role in samples.values:
-        found = _ENTRY_COLUMN.match(role)
-        if found is not None:
-            to, start = (int(one) for one in found.groups()[:4] if one is not None)
-            parts.setdefault((to, start), {})[found["part"]] = role
-    ports = round(len(parts) ** 0.5)
+    roles = roles_of_entries(samples)
+    ports = round(len(roles) ** 0.5)
     every = [(m, n) for m in range(1, ports + 1) for n in range(1, ports + 1)]
-    pairs = [_pair(parts.get(one, {})) for one in every]
-    if not ports or len(parts) != ports * ports or None in pairs:
+    pairs = [roles.get(one) for one in every]
+    if not ports or len(roles) != ports * ports or None in pairs:
         raise CalculationError(
             "an active reflection needs every entry of a network",
             hint="derive it from the table of a network file",
         )
     entries = [entry(samples, pair) for pair in pairs if pair is not None]
     return np.stack(entries, axis=-1).reshape(-1, ports, ports)
+
+
+def roles_of_entries(samples: Samples) -> dict[tuple[int, int], tuple[str, str] | None]:
+    """Return the two roles of each entry (to, from; counted from 1) of a whole network table, None where one lacks."""
+    parts: dict[tuple[int, int], dict[str, str]] = {}
+    for role in samples.values:
+        found = _ENTRY_COLUMN.match(role)
+        if found is not None:
+            to, start = (int(one) for one in found.groups()[:4] if one is not None)
+            parts.setdefault((to, start), {})[found["part"]] = role
+    return {place: _pair(own) for place, own in parts.items()}
 
 
 def _pair(parts: dict[str, str]) -> tuple[str, str] | None:

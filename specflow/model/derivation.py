@@ -86,14 +86,16 @@ class Derivation(Document):
 
     @property
     def words(self) -> str:
-        """Say it in one line: "worst of Gain over frequency 17.7..20.2 GHz"."""
+        """Say it in one line: "worst of Gain over frequency 17.7..20.2 GHz"; a whole table by its ends."""
         many = len(self.columns) > 1
-        of = ", ".join(
-            (f"{one.role} " if many else "")
+        names = [
+            (f"{one.role} " if many and one.role != one.column else "")
             + one.column
             + (f" where {' and '.join(one.where)}" if one.where else "")
             for one in self.columns
-        )
+        ]
+        whole = len(names) > 4 and all(one.role == one.column for one in self.columns)
+        of = f"{names[0]} ... {names[-1]} ({len(names)} columns)" if whole else ", ".join(names)
         over = f" over {' and '.join(self.over)}" if self.over else ""
         where = f" where {' and '.join(self.where)}" if self.where else ""
         said = ", ".join(f"{one.name} {one.text}" for one in self.settings if one.text)

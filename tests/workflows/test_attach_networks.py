@@ -263,3 +263,29 @@ def test_a_trace_says_the_reference_impedance_and_the_conditions_with_their_valu
     for texts in (of_requirement, of_table):
         assert any(text.startswith("temperature case 125 °C, stated") for text in texts)
         assert any(text.startswith("input level -30 dBm, stated by the person") for text in texts)
+
+
+def test_a_differential_gain_is_derived_from_a_file_of_single_ports(
+    store: ProjectStore, tmp_path: Path
+) -> None:
+    """Two equal lines of 6 dB: that of the pair; the words of the derivation name the table by its ends."""
+    rows = "".join(
+        f"{k} 0.1 0 0.1 0 0.1 0 0.1 0\n2.1 0 0.1 0 0.1 0 0.1 0\n0.1 0 0.1 0 0.1 0 0.1 0\n0.1 0 0.1 0 2.1 0 0.1 0\n"
+        for k in range(1, 11)
+    )
+    path = tmp_path / "pair.s4p"
+    path.write_text(f"# GHz S MA R 50\n{rows}")
+    wanted = a_requirement(
+        "R-DD", block="FIL", quantity=a_quantity("gain"), limit=at_least(6), conditions="TEN"
+    )
+    band_of_ten = a_conditions_set("TEN", a_dimension(span=Span(low=1.0, high=10.0, step=1.0), tolerance=0.0))
+    store.apply(adding(band_of_ten, wanted, an_activity("R-DD")), by="A. B.")
+    attached(store, path, block="FIL", item="FIL-7", derive="none")
+    options = DeriveOptions(
+        "mode gain", ("EV-1",), settings={"input": "D1,3", "output": "D2,4"}, requirement="R-DD"
+    )
+    preview = preview_derive(store, options)
+    assert preview.derivation.words == (
+        "mode gain of S11 magnitude ... S44 angle (32 columns) (input D1,3, output D2,4)"
+    )
+    assert preview.derived.columns.values["gain"].low == pytest.approx(20 * np.log10(2.0))
