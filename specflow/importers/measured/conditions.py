@@ -78,15 +78,14 @@ def _numbers(
             )
         )
     read.notes += [f"{meaning.header.line}: {note}" for note in numbers.notes]
-    values = numbers.low
     if numbers.high is not numbers.low:
         for place in np.flatnonzero(numbers.high != numbers.low).tolist():
-            if np.isnan(values[place]):
+            if np.isnan(numbers.low[place]):
                 continue
             rejects.add(int(rows[place]), meaning.column, table.cells(meaning.column).value(int(rows[place])),
                         "a condition must be one value, not a bound or a range")  # fmt: skip
-            values[place] = np.nan
-    values = _merged_numbers(table, meaning.column, rows, values, read.notes)
+            numbers.drop(place)
+    values = _merged_numbers(table, meaning.column, rows, numbers.low, read.notes)
     if meaning.fill_down:
         last = np.maximum.accumulate(np.where(np.isnan(values), -1, np.arange(len(values))))
         values = np.where(last >= 0, values[np.maximum(last, 0)], values)
@@ -114,9 +113,9 @@ def _merged_spans(table: FoundTable, column: int, rows: Rows) -> list[tuple[int,
 def _merged_words(
     table: FoundTable, column: int, rows: Rows, words: TextColumn, notes: list[str]
 ) -> TextColumn:
-    codes = words.codes.copy()
+    codes = words.codes
     for anchor, others, where in _merged_spans(table, column, rows):
-        codes[others] = codes[anchor]
+        codes = np.where(others, codes[anchor], codes)
         notes.append(f"merged cells {where}: the value holds for all their rows")
     return TextColumn(codes, words.labels)
 
@@ -125,7 +124,7 @@ def _merged_numbers(
     table: FoundTable, column: int, rows: Rows, values: NDArray[np.float64], notes: list[str]
 ) -> NDArray[np.float64]:
     for anchor, others, where in _merged_spans(table, column, rows):
-        values[others] = values[anchor]
+        values = np.where(others, values[anchor], values)
         notes.append(f"merged cells {where}: the value holds for all their rows")
     return values
 

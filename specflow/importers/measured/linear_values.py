@@ -21,7 +21,7 @@ def doubt_linear(work: TableWork, meaning: ColumnMeaning, numbers: Numbers) -> N
     negative = np.flatnonzero(np.isfinite(numbers.high) & (numbers.high < 0))
     for place in negative.tolist():
         work.rejects.add(int(work.rows[place]), meaning.column, float(numbers.low[place]), reason)
-        numbers.low[place] = numbers.high[place] = np.nan
+        numbers.drop(place)
     zeros = np.flatnonzero((numbers.low == 0) & (numbers.high == 0))
     if len(zeros):
         count = f"{len(zeros)} readings are" if len(zeros) > 1 else "a reading is"

@@ -39,8 +39,10 @@ def _marks() -> frozenset[float]:
 _MARKS = np.array(sorted(_marks()))
 
 
-def reject_placeholders(low: NDArray[np.float64], column: int, rows: Rows, rejects: Rejects) -> None:
-    """Reject the placeholders among plain numbers, and put NaN in their place.
+def without_placeholders(
+    low: NDArray[np.float64], column: int, rows: Rows, rejects: Rejects
+) -> NDArray[np.float64]:
+    """Reject the placeholders among plain numbers; returns the numbers, or a copy with NaN in the place of these.
 
     One that has a reading of its sign within half of its size beside it (998 mA, 999 mA) is a reading; where the
     mapping keeps placeholders all are, but for those of SCPI.
@@ -48,10 +50,9 @@ def reject_placeholders(low: NDArray[np.float64], column: int, rows: Rows, rejec
     with np.errstate(invalid="ignore"):
         size = np.abs(low)
         if not (size >= _MARKS[0]).any():
-            return
-        _reject(low, size >= NO_NUMBER, column, rows, rejects, _NO_NUMBER_REASON)
-    if not rejects.keep_placeholders:
-        _reject(low, _alone(low), column, rows, rejects, _REASON)
+            return low
+        low = _without(low, size >= NO_NUMBER, column, rows, rejects, _NO_NUMBER_REASON)
+    return low if rejects.keep_placeholders else _without(low, _alone(low), column, rows, rejects, _REASON)
 
 
 def only_mark(table: FoundTable, column: int) -> str:
@@ -107,9 +108,9 @@ def _alone(low: NDArray[np.float64]) -> NDArray[np.bool_]:
     return alone
 
 
-def _reject(
+def _without(
     low: NDArray[np.float64], which: NDArray[np.bool_], column: int, rows: Rows, rejects: Rejects, reason: str
-) -> None:
+) -> NDArray[np.float64]:
     for place in np.flatnonzero(which).tolist():
         rejects.add(int(rows[place]), column, float(low[place]), reason)
-    low[which] = np.nan
+    return np.where(which, np.nan, low) if which.any() else low

@@ -15,7 +15,7 @@ from numpy.typing import NDArray
 from specflow.errors import UnitError
 from specflow.importers.measured.cell_units import brought, slip_of, to_unit
 from specflow.importers.measured.cells import Rows
-from specflow.importers.measured.placeholders import reject_placeholders
+from specflow.importers.measured.placeholders import without_placeholders
 from specflow.importers.measured.rejects import Rejects
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.measured.unit_source import format_runs
@@ -40,12 +40,29 @@ _FAULTY_BLANKS = ("not a number", "error in the cell", "SCPI", "overload", "inva
 
 @dataclass
 class Numbers:
-    """``low`` and ``high`` are one array where all readings are points; NaN where there is none."""
+    """``low`` and ``high`` are one array where all readings are points; NaN where there is none.
+
+    The arrays may be the grid's own, which are locked: ``put`` and ``drop`` copy them before they write.
+    """
 
     low: Floats
     high: Floats
     notes: list[str] = field(default_factory=list)
     problem: str = ""
+
+    def put(self, place: int, low: float, high: float) -> None:
+        """Write the reading of one row."""
+        if not self.low.flags.writeable:
+            points = self.high is self.low
+            self.low = self.low.copy()
+            self.high = self.low if points else self.high
+        if low < high and self.high is self.low:
+            self.high = self.low.copy()
+        self.low[place], self.high[place] = low, high
+
+    def drop(self, place: int) -> None:
+        """Leave out the reading of one row."""
+        self.put(place, np.nan, np.nan)
 
 
 @dataclass(frozen=True, slots=True)
@@ -66,14 +83,13 @@ def read_numbers(table: FoundTable, column: int, spelled: Spelled, rows: Rows, r
     """Read the rows of one column; ``problem`` says when its number formats contradict its unit as a whole."""
     cells = table.cells(column)
     unit = parse_unit(spelled.unit or "1")
-    low = cells.numbers_at(rows)
+    low = without_placeholders(cells.numbers_at(rows), column, rows, rejects)
     numbers = Numbers(low, low)
-    reject_placeholders(low, column, rows, rejects)
     _apply_formats(table, column, unit, rows, numbers, rejects)
     if cells.odd:
         _read_odd(table, column, unit, spelled.by_cell, rows, numbers, rejects)
         if numbers.high is numbers.low:  # a bound is no placeholder
-            reject_placeholders(numbers.low, column, rows, rejects)
+            numbers.low = numbers.high = without_placeholders(numbers.low, column, rows, rejects)
     if spelled.by_row:
         _bring_rows(table, column, spelled.by_row, unit, rows, numbers, rejects)
     if spelled.scale != 1:
@@ -114,7 +130,7 @@ def _apply_formats(
         if reason:
             for place in np.flatnonzero((rows >= run.first) & (rows <= run.last) & numeric).tolist():
                 rejects.add(int(rows[place]), column, float(numbers.low[place]), reason)
-                numbers.low[place] = np.nan
+                numbers.drop(place)
 
 
 def _marked(runs: list[OddRun], kind: OddKind, rows: Rows) -> NDArray[np.bool_]:
@@ -177,7 +193,7 @@ def _bring_rows(
                 ends = (np.nan, np.nan)
             else:
                 changed.append(table.grid.address(int(rows[place]), column))
-            numbers.low[place], numbers.high[place] = ends
+            numbers.put(place, *ends)
         if changed:
             numbers.notes.append(_conversion(len(changed), changed[0], str(written), unit))
 
@@ -221,9 +237,7 @@ def _read_odd(
         ends = reader.ends(row, value)
         if ends is None:
             continue
-        if ends[0] != ends[1] and numbers.high is numbers.low:
-            numbers.high = numbers.low.copy()
-        numbers.low[place], numbers.high[place] = ends
+        numbers.put(place, *ends)
         texts += ends[0] == ends[1]
     if texts and not table.grid.is_text:
         numbers.notes.append(f"{texts} numbers stored as text were read")

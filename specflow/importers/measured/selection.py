@@ -143,15 +143,14 @@ def _left_out(table: FoundTable, rows: Rows, reason: str) -> Iterator[Rejected]:
 
 def _summary_rows(table: FoundTable, meanings: Sequence[ColumnMeaning], rows: Rows) -> list[int]:
     """Rows whose first filled cell is a word like "Mean", unless it stands among words of its column."""
-    wanted = frozenset(rows.tolist())
     found: list[int] = []
     before: list[ColumnMeaning] = []
     for meaning in meanings:
         cells = table.cells(meaning.column)
         texts = cells.distinct if cells.odd else ()
         words = {text for text in texts if isinstance(text, str) and is_summary(text)}
-        for row in cells.odd if words else ():
-            if row in wanted and cells.value(row) in words:
+        for row in np.intersect1d(cells.odd, rows).tolist() if words else ():
+            if cells.value(row) in words:
                 first = all(is_blank(table.grid.value(row, one.column)) for one in before)
                 if first and not _is_a_setting(table, meaning, meanings, row):
                     found.append(row)

@@ -106,7 +106,7 @@ def _reject_merged(work: TableWork, column: int, numbers: Numbers) -> None:
         for place in np.flatnonzero(inside).tolist():
             reason = f"merged cells {area}: it does not say for which of them the value is"
             work.rejects.add(int(work.rows[place]), column, float(numbers.low[place]), reason)
-            numbers.low[place] = numbers.high[place] = np.nan
+            numbers.drop(place)
 
 
 def _doubt_sign(work: TableWork, meaning: ColumnMeaning, numbers: Numbers) -> None:

@@ -19,7 +19,7 @@ from numpy.typing import NDArray
 from specflow.errors import FileError
 from specflow.importers.readers.odd_cells import OddCell, OddCells, OddKind, OddRun
 from specflow.importers.readers.places import CellRange, address, column_letter
-from specflow.importers.readers.stores import CellStore, Value
+from specflow.importers.readers.stores import CellStore, Coded, Value
 
 T = TypeVar("T")
 
@@ -103,6 +103,14 @@ class Grid:
         if isinstance(self.rows, CellStore):
             return place >= 0 and self.rows.has_numbers(place, first, last)
         return not set(map(type, _column_of(self.rows, place, first, last))) <= {str}
+
+    def coded(self, column: int, start: int, stop: int) -> Coded | None:
+        """The words of one column in rows ``start`` up to ``stop``, coded; None where they are kept cell by cell."""
+        first, last, above, below = self._inside(start, stop)
+        place = column - self.first_column
+        if not isinstance(self.rows, CellStore) or place < 0 or above or below:
+            return None
+        return self.rows.coded(place, first, last)
 
     def _inside(self, start: int, stop: int) -> tuple[int, int, int, int]:
         """Rows ``start`` up to ``stop`` as places in ``rows``, and how many of them lie above and below the grid."""

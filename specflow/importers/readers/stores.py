@@ -11,7 +11,7 @@ from abc import abstractmethod
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from datetime import date, datetime, time, timedelta
-from typing import overload
+from typing import TypeVar, overload
 
 import numpy as np
 from numpy.typing import NDArray
@@ -19,9 +19,27 @@ from numpy.typing import NDArray
 Value = str | float | int | bool | datetime | date | time | timedelta
 """What a cell can hold; an empty cell is ``""``."""
 
+T = TypeVar("T", bound=np.generic)
 Floats = NDArray[np.float64]
 Codes = NDArray[np.int32]
 Flags = NDArray[np.bool_]
+
+
+@dataclass(frozen=True, slots=True)
+class Coded:
+    """A column of words: ``codes`` (n,) int32 into ``words``; -1 is an empty cell."""
+
+    codes: Codes
+    words: Sequence[Value]
+
+    def value(self, code: int) -> Value:
+        """The cell that a code stands for."""
+        return "" if code < 0 else self.words[code]
+
+    def is_blank(self) -> Flags:
+        """Which cells hold nothing but blanks."""
+        blank = [isinstance(word, str) and not word.strip() for word in self.words]
+        return np.array([*blank, True])[self.codes]
 
 
 class CellStore(Sequence[list[Value]]):
@@ -52,6 +70,10 @@ class CellStore(Sequence[list[Value]]):
     @abstractmethod
     def has_numbers(self, place: int, start: int, stop: int) -> bool:
         """Whether a cell of these rows may be something else than text."""
+
+    def coded(self, place: int, start: int, stop: int) -> Coded | None:
+        """The words of a column that holds no numbers; None where the store keeps none, or they are not coded."""
+        return None
 
     def cut(self, first_row: int, stop_row: int, first: int, stop: int) -> CellStore:
         """The cells of rows ``first_row`` up to ``stop_row`` in columns ``first`` up to ``stop``, not copied."""
@@ -100,6 +122,13 @@ class CutStore(CellStore):
         if place >= self.width:
             return np.full(stop - start, np.nan), np.zeros(stop - start, bool)
         return self._whole.numbers(place + self._left, start + self._top, stop + self._top)
+
+    def coded(self, place: int, start: int, stop: int) -> Coded | None:
+        return (
+            self._whole.coded(place + self._left, start + self._top, stop + self._top)
+            if place < self.width
+            else None
+        )
 
     def has_numbers(self, place: int, start: int, stop: int) -> bool:
         return place < self.width and self._whole.has_numbers(
@@ -172,6 +201,14 @@ class TypedColumns(CellStore):
             other |= ~self._blank[column.codes[start:stop]]
         return numbers, other
 
+    def coded(self, place: int, start: int, stop: int) -> Coded | None:
+        column = self._columns[place] if place < self.width else TypedColumn(None, None)
+        if column.codes is None or (
+            column.numbers is not None and not np.isnan(column.numbers[start:stop]).all()
+        ):
+            return None
+        return Coded(locked(column.codes[start:stop]), self._words)
+
     def has_numbers(self, place: int, start: int, stop: int) -> bool:
         column = self._columns[place] if place < self.width else TypedColumn(None, None)
         if column.numbers is not None and not np.isnan(column.numbers[start:stop]).all():
@@ -179,7 +216,7 @@ class TypedColumns(CellStore):
         return column.codes is not None and not bool(self._text[column.codes[start:stop]].all())
 
 
-def locked(array: Floats) -> Floats:
+def locked(array: NDArray[T]) -> NDArray[T]:
     """A view that nobody can write into."""
     view = array.view()
     view.flags.writeable = False
