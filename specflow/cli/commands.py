@@ -44,6 +44,7 @@ COMMANDS = (
     CommandEntry("testsheet", "Write a test sheet: the points still missing, for the bench."),
     CommandEntry("attach", "Attach measurement files."),
     CommandEntry("derive", "Derive results from raw tables by a law."),
+    CommandEntry("withdraw", "Withdraw evidence that was found wrong."),
     CommandEntry("known", "Evaluate a budget with the best that is known of each block."),
     CommandEntry("try", "Try changes: what they would do to margins, allocations and status.", "try_"),
     CommandEntry("status", "Show what is proved, what fails and what has no evidence."),

@@ -116,7 +116,7 @@ def _refuse_unsaid(preview: AttachPreview, decision: Decision) -> Mapping[int, S
                 f"no row of {preview.path.name} has the identity of a row of {name}",
                 where=name,
                 hint="rows are the same when block, quantities, item, conditions with their units, set-up and "
-                "performer are; see the preview",
+                "performer are; see the preview. An earlier run that was found wrong: specflow withdraw",
             )
     if decision.resolves and not named:
         raise DocumentError("--resolves names a fail, but nothing is superseded", where=preview.path.name,

@@ -80,7 +80,7 @@ def try_changes(store: ProjectStore, texts: Sequence[str], as_of: date) -> Trial
     after = with_documents(before, documents)
     effects = budget_effects(before, after, dictionary, (_carried(before), _carried(after)))
     allocations, notes = _allocations(before, after, dictionary)
-    statuses = _statuses(
+    statuses = status_effects(
         before,
         evaluate(before, dictionary, as_of=as_of),
         evaluate(after, dictionary, as_of=as_of),
@@ -210,7 +210,8 @@ def _effect(
     return AllocationEffect(link.id, link.child, limit, proposed if difference else "", difference, why)
 
 
-def _statuses(snapshot: Snapshot, before: Results, after: Results) -> tuple[StatusEffect, ...]:
+def status_effects(snapshot: Snapshot, before: Results, after: Results) -> tuple[StatusEffect, ...]:
+    """Return the requirements whose state, proved points or guarded margin differ between two evaluations."""
     found = []
     for requirement in snapshot.requirements:
         first, second = (

@@ -10,7 +10,7 @@ from specflow.budgets.trial import BudgetEffect, BudgetState, LimitState
 from specflow.model.report import ReportCell, ReportRow, ReportTable
 from specflow.reports.figures import margin, text
 from specflow.workflows.allocate_tables import plain_row, table
-from specflow.workflows.try_change import Trial
+from specflow.workflows.try_change import StatusEffect, Trial
 
 
 def trial_tables(trial: Trial) -> list[ReportTable]:
@@ -18,7 +18,7 @@ def trial_tables(trial: Trial) -> list[ReportTable]:
     tables = [_margins(trial.budgets)]
     if trial.allocations:
         tables.append(_allocations(trial))
-    tables.append(_statuses(trial))
+    tables.append(statuses_table(trial.statuses))
     return tables
 
 
@@ -81,7 +81,8 @@ def _allocations(trial: Trial) -> ReportTable:
     return table("allocations", "Allocations that would follow no longer", "", titles, rows)
 
 
-def _statuses(trial: Trial) -> ReportTable:
+def statuses_table(effects: Sequence[StatusEffect]) -> ReportTable:
+    """Return the requirements whose status would change, before and after."""
     rows = [
         ReportRow(
             id=one.requirement,
@@ -93,7 +94,7 @@ def _statuses(trial: Trial) -> ReportTable:
                 margin(one.margin[1], one.unit),
             ),
         )
-        for one in trial.statuses
+        for one in effects
     ]
     intro = "" if rows else "no status would change"
     titles = ("Requirement", "State", "Proved", "Guarded margin", "Then")
@@ -154,16 +155,7 @@ def trial_as_json(trial: Trial) -> dict[str, Any]:
             }
             for one in trial.allocations
         ],
-        "statuses": [
-            {
-                "requirement": one.requirement,
-                "label": list(one.label),
-                "proved": list(one.proved),
-                "margin": [_plain(value) for value in one.margin],
-                "unit": one.unit,
-            }
-            for one in trial.statuses
-        ],
+        "statuses": statuses_as_json(trial.statuses),
         "notes": list(trial.notes),
     }
 
@@ -199,3 +191,17 @@ def _state(state: BudgetState | None) -> dict[str, Any] | None:
 
 def _plain(value: float) -> float | None:
     return value if math.isfinite(value) else None
+
+
+def statuses_as_json(effects: Sequence[StatusEffect]) -> list[dict[str, Any]]:
+    """Return the requirements whose status would change as data for scripts."""
+    return [
+        {
+            "requirement": one.requirement,
+            "label": list(one.label),
+            "proved": list(one.proved),
+            "margin": [_plain(value) for value in one.margin],
+            "unit": one.unit,
+        }
+        for one in effects
+    ]
