@@ -40,19 +40,20 @@ def amplitude_imbalance(samples: Samples) -> Outcome:
 def phase_imbalance(samples: Samples) -> Outcome:
     """Return the phase of the first path against the other, less the nominal difference, in degrees.
 
-    Formula: arg(S/S other) - nominal, brought between -180 and 180 degrees.
-    Valid: both from one input, at the same frequencies. The nominal difference is 90 deg for a quadrature hybrid.
+    Formula: arg(S/S other) - nominal, brought within half a turn of ``near``: between -180 and 180 degrees for 0.
+    Valid: both from one input, at the same frequencies. The nominal difference is 90 deg for a quadrature hybrid. Of
+    outputs in antiphase, near 180 deg: -179 deg are 181 deg there.
     Source: definition; the sign is first minus other.
     """
-    nominal = samples.number("nominal")
+    nominal, near = samples.number("nominal"), samples.number("near")
     difference: Complexes = (
-        entry(samples) * np.conj(entry(samples, OTHER)) * np.exp(-1j * np.deg2rad(nominal))
+        entry(samples) * np.conj(entry(samples, OTHER)) * np.exp(-1j * np.deg2rad(nominal + near))
     )
     if (difference == 0).any():
         raise CalculationError(
             "an entry is zero at some place, which has no phase", hint="choose a range without it"
         )
-    value: Floats = np.rad2deg(np.angle(difference))
+    value: Floats = near + np.rad2deg(np.angle(difference))
     return row_by_row(value, "deg")
 
 
@@ -161,7 +162,10 @@ PATH_LAWS: tuple[Law, ...] = (
         over="each",
         needs=_TWO,
         roles=(*ENTRY, *OTHER),
-        settings=(Setting("nominal", "the difference that is meant to be there", "0 deg", "deg"),),
+        settings=(
+            Setting("nominal", "the difference that is meant to be there", "0 deg", "deg"),
+            Setting("near", "results are given within half a turn of this angle", "0 deg", "deg"),
+        ),
         gives=("phase_imbalance",),
     ),
     Law(

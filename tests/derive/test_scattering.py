@@ -181,6 +181,12 @@ def test_imbalance_of_two_paths_is_first_minus_other() -> None:
         np.exp(1j * np.deg2rad([-179.0])), "RI", ("other first", "other second")
     )
     assert law("phase imbalance", around).value == pytest.approx([-2])
+    antiphase = pair(np.exp(1j * np.deg2rad([-179.0, 178.0]))) | pair(
+        [1.0, 1.0], "RI", ("other first", "other second")
+    )
+    assert law("phase imbalance", antiphase).value == pytest.approx([-179, 178])
+    assert law("phase imbalance", antiphase, near="180 deg").value == pytest.approx([181, 178])
+    assert law("phase imbalance", antiphase, near="-180 deg").value == pytest.approx([-179, -182])
 
 
 def test_active_reflection_over_scan_as_scikit_rf_has_it() -> None:
@@ -257,7 +263,7 @@ def test_two_paths_of_zeros_are_not_balanced(name: str) -> None:
     nothing = np.zeros(3)
     units = {"first": "dB", "second": "deg", "other first": "dB", "other second": "deg"}
     readings = {role: Readings(nothing, nothing, unit) for role, unit in units.items()}
-    with pytest.raises(CalculationError, match="hardly measured|are 0 at 3 of 3"):
+    with pytest.raises(CalculationError, match="are 0 at 3 of 3"):
         law(name, readings)
 
 

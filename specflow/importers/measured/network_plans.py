@@ -10,6 +10,7 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field, replace
 
 from specflow.importers.measured.context import Context
+from specflow.importers.measured.limit_turn import turn_of
 from specflow.importers.measured.network_ports import Ports
 from specflow.model.base import code_key
 from specflow.model.block import Block
@@ -64,6 +65,7 @@ class _Wish:
     band: str = ""
     scan: str = ""
     spacing: str = ""
+    near: str = ""
 
 
 class _NotPlanned(Exception):
@@ -120,7 +122,12 @@ def _required(block: Block, context: Context, spacing: str) -> list[_Wish]:
     own = [one for one in context.snapshot.requirements if code_key(one.block) == code_key(block.id)]
     return [
         _Wish(
-            one.quantity, one.id, _span(one, context, "frequency"), _span(one, context, "scan_theta"), spacing
+            one.quantity,
+            one.id,
+            _span(one, context, "frequency"),
+            _span(one, context, "scan_theta"),
+            spacing,
+            turn_of(one.limit.tree),
         )
         for one in own
     ]
@@ -252,7 +259,8 @@ def _linearity(wish: _Wish, ports: Ports, _: bool) -> Plan:
 
 def _of_paths(law: str) -> Make:
     def make(wish: _Wish, ports: Ports, _: bool) -> Plan:
-        return Plan(law, wish.quantity, _two_paths(wish.quantity, ports), wish.why)
+        settings = {"near": wish.near} if wish.near and law == "phase imbalance" else {}
+        return Plan(law, wish.quantity, _two_paths(wish.quantity, ports), wish.why, settings=settings)
 
     return make
 

@@ -13,6 +13,7 @@ from specflow.errors import FileError
 from specflow.importers.measured.network_facts import comment_facts
 from specflow.importers.measurements import MeasuredTable, Measurements, read_measurements
 from specflow.importers.readers.touchstone_network import Comment
+from specflow.limits import parse_limit
 from specflow.model.base import Document
 from specflow.model.conditions import Span
 from specflow.model.evidence import TableMapping
@@ -591,3 +592,20 @@ def test_the_name_of_a_port_stands_without_its_quotes(tmp_path: Path) -> None:
     path = tmp_path / "a.s2p"
     path.write_text(f"! Port[1] = \"in\"\n! Port[2] = 'out'\n# GHz S MA R 50\n{ROWS}")
     assert planned(raw(path, wanted("gain"))) == [("gain", "gain", "S21")]
+
+
+@pytest.mark.parametrize(
+    ("limit", "near"),
+    [("180 ± 5 deg", "180 deg"), ("-180 ± 5 deg", "-180 deg"), ("175 to 185 deg", "180 deg"), ("90 ± 5 deg", None),
+     ("<= 185 deg", None)],
+)  # fmt: skip
+def test_a_phase_imbalance_is_given_in_the_turn_of_its_limit(
+    tmp_path: Path, limit: str, near: str | None
+) -> None:
+    """Of outputs in antiphase -179 deg are 181 deg: within 180 ± 5 deg, which a file never says."""
+    path = tmp_path / "a.s3p"
+    path.write_text("# GHz S MA R 50\n1 0.1 0 0.7 0 0.6 0\n0.7 0 0.1 0 0.2 0\n0.6 0 0.2 0 0.1 0\n")
+    names = {"port 1": "in", "port 2": "out 1", "port 3": "out 2"}
+    requirement = wanted("phase_imbalance").model_copy(update={"limit": parse_limit(limit)})
+    [plan] = raw(path, requirement, **names).plans
+    assert dict(plan.settings) == ({"near": near} if near else {})
