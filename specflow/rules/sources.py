@@ -6,6 +6,7 @@ import math
 import re
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
+from functools import lru_cache
 
 from specflow.errors import UnitError
 from specflow.model.base import code_key
@@ -19,7 +20,7 @@ from specflow.rules.facts import FAILS, Facts
 from specflow.rules.words import at_point, counted
 from specflow.units import converter, parse_reading_with_unit, parse_unit
 
-_PASSED = (
+_PASSED = [
     "pass",
     "passed",
     "p",
@@ -33,8 +34,8 @@ _PASSED = (
     "conform",
     "conforms",
     "met",
-)
-_FAILED = (
+]
+_FAILED = [
     "fail",
     "failed",
     "f",
@@ -48,9 +49,8 @@ _FAILED = (
     "nogo",
     "notok",
     "notmet",
-)
-_CLOSE = 1e-9
-_MOST_POINTS = 20_000
+]
+_CLOSE = 1e-9  # what a conversion may leave of a difference
 
 
 @dataclass(slots=True)
@@ -72,9 +72,7 @@ def stated_verdict_differs(facts: Facts) -> Iterator[Found]:
     Passes: the sheet and we come to the same verdict for every governing reading.
     Do: compare the limit of the source with the requirement; correct the one that is wrong.
     """
-    for requirement, told in _compared(facts, "verdict"):
-        message = f"{told.words}{_more(told)}"
-        yield Found(requirement.id, message, origin=facts.origin(told.first), related=tuple(told.tables))
+    yield from _differing(facts, "verdict")
 
 
 def stated_limit_differs(facts: Facts) -> Iterator[Found]:
@@ -85,9 +83,7 @@ def stated_limit_differs(facts: Facts) -> Iterator[Found]:
     Passes: the limit beside the reading is that of the requirement, in whatever unit.
     Do: find out which of the two is in force; correct the requirement, or have the source mended.
     """
-    for requirement, told in _compared(facts, "limit"):
-        message = f"{told.words}{_more(told)}"
-        yield Found(requirement.id, message, origin=facts.origin(told.first), related=tuple(told.tables))
+    yield from _differing(facts, "limit")
 
 
 def stated_fail_unjudged(facts: Facts) -> Iterator[Found]:
@@ -170,6 +166,12 @@ def _failed(facts: Facts, table: EvidenceTable, said: StatedColumn) -> list[int]
     return [row for row, code in enumerate(words.codes.tolist()) if code in failed]
 
 
+def _differing(facts: Facts, kind: str) -> Iterator[Found]:
+    for requirement, told in _compared(facts, kind):
+        message = f"{told.words}{_more(told)}"
+        yield Found(requirement.id, message, origin=facts.origin(told.first), related=tuple(told.tables))
+
+
 def _compared(facts: Facts, kind: str) -> Iterator[tuple[Requirement, Told]]:
     """Yield the requirements of which governing readings differ from what stands beside them in their source."""
     for requirement, status in facts.judged:
@@ -200,7 +202,7 @@ def _stated(
     if not any(columns):
         return
     places, values = results.table.tolist(), results.column.tolist()
-    for point, place in enumerate(places[:_MOST_POINTS]):
+    for point, place in enumerate(places):
         table = tables[place] if place >= 0 else None
         if table is None:
             continue
@@ -237,18 +239,14 @@ def _other_verdict(text: str, ours: Verdict) -> str:
     return ""
 
 
+@lru_cache(maxsize=1024)
 def _plain(text: str) -> str:
     return re.sub(r"[\s\-_]+", "", text.casefold())
 
 
 def _other_limit(text: str, said: StatedColumn, unit: str, ends: Mapping[str, float]) -> str:
     """Compare a limit as written with ours; a side that is not said may be either of them."""
-    try:
-        reading, written = parse_reading_with_unit(text.lstrip("<>≤≥= "))
-        step = converter(written or parse_unit(said.unit or unit or "1"), parse_unit(unit or "1"))
-        stated = float(step(getattr(reading, "lo", math.nan)))
-    except UnitError:
-        return ""
+    stated = _stated_limit(text, said.unit or unit or "1", unit or "1")
     sides = [said.side] if said.side else ["lower", "upper"]
     ours = [ends[side] for side in sides if math.isfinite(ends[side])]
     if not math.isfinite(stated) or any(abs(stated - one) <= _CLOSE * max(1.0, abs(one)) for one in ours):
@@ -256,6 +254,18 @@ def _other_limit(text: str, said: StatedColumn, unit: str, ends: Mapping[str, fl
     side = {"lower": "a lower limit", "upper": "an upper limit"}.get(said.side, "a limit")
     mine = " and ".join(_exactly(one, unit) for one in ours) or "no such limit"
     return f"the source states {side} of {_exactly(stated, unit)}, the requirement has {mine}"
+
+
+@lru_cache(maxsize=1024)
+def _stated_limit(text: str, unit: str, wanted: str) -> float:
+    """A limit as it is written in a cell, in ``wanted``; NaN where it cannot be read."""
+    try:
+        reading, written = parse_reading_with_unit(text.lstrip("<>≤≥= "))
+        return float(
+            converter(written or parse_unit(unit), parse_unit(wanted))(getattr(reading, "lo", math.nan))
+        )
+    except UnitError:
+        return math.nan
 
 
 def _exactly(value: float, unit: str) -> str:
