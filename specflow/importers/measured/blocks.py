@@ -15,6 +15,7 @@ import numpy as np
 from specflow.errors import UnitError
 from specflow.importers.measured.cells import read_column
 from specflow.importers.measured.context import Context
+from specflow.importers.measured.cut_title import with_cut
 from specflow.importers.measured.facts import Fact, read_preamble
 from specflow.importers.measured.header_cells import HeaderCell
 from specflow.importers.measured.header_text import header_key, known_unit
@@ -93,7 +94,7 @@ def block_table(grid: Grid, top: int, block: int, context: Context) -> FoundTabl
     words = _words_above(grid, top, block)
     table = replace(table, grid=cells, headers=headers, top=block, words_above=words, has_words=bool(words))
     table = replace(table, doubts=_matrix_question(table))
-    return replace(table, facts=section_facts(grid, top, block))
+    return with_cut(replace(table, facts=section_facts(grid, top, block)), grid, block)
 
 
 def _matrix_question(table: FoundTable) -> tuple[Question, ...]:

@@ -77,6 +77,7 @@ READERS = (
 
 
 _CONTROL = re.compile(rb"[\x00-\x08\x0e-\x19\x1b-\x1f\x7f]")
+_LEAST_ROWS = 3
 REMEDIES = {
     ".xlsb": "save it as .xlsx",
     ".fods": "save it as .ods",
@@ -122,7 +123,7 @@ def open_grids(path: str | Path, expected: FileFingerprint | None = None) -> Gri
     ending = path.suffix.lower()
     named = next((reader for reader in READERS if ending in reader.endings), None)
     if named is None:
-        raise _unknown(path)
+        return _of_unknown_ending(path, source)
     content = content_of(source)
     if content is named.content:
         return GridFile(source.fingerprint, tuple(named.read(source)))
@@ -142,6 +143,22 @@ def open_grids(path: str | Path, expected: FileFingerprint | None = None) -> Gri
         )
     note = f"its ending is {ending}, but the file is {content}, and was read so"
     return GridFile(source.fingerprint, tuple(replace(grid, notes=(note, *grid.notes)) for grid in grids))
+
+
+def _of_unknown_ending(path: Path, source: Source) -> GridFile:
+    """Text in columns of numbers is read whatever its ending: antenna files and instruments have their own."""
+    if path.suffix.lower() in REMEDIES or content_of(source) is not Content.TEXT or not _is_text(source):
+        raise _unknown(path)
+    grids = read_csv(source)
+    numbers = [sum(map(_is_number, row)) for grid in grids for row in grid.rows]
+    if sum(count > 1 for count in numbers) < _LEAST_ROWS:
+        raise _unknown(path)
+    note = f"files of the kind {path.suffix!r} are not known; this one is text, and was read so"
+    return GridFile(source.fingerprint, tuple(replace(grid, notes=(note, *grid.notes)) for grid in grids))
+
+
+def _is_number(value: Value) -> bool:
+    return isinstance(value, str) and looks_numeric(value)
 
 
 def _unknown(path: Path) -> FileError:

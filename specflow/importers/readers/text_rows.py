@@ -22,6 +22,9 @@ COMMENT_MARKS = ("#", "!", "%", "//")
 
 _RULE = frozenset("-=_*~")
 _BESIDE_RULES = re.compile(r"[\s|+:;,]+")
+_SETTING = re.compile(r"([A-Za-z][A-Za-z_]+)\s+([+\-−]?[0-9]+(?:\.[0-9]+)?)(?:\s+([A-Za-z°µ%/]{1,6}))?")
+"""A line of a text in columns that states one number by its name: ``GAIN 14.2 dBd``."""
+
 _KEY_LINE = re.compile(r"[^\W\d_][^:=,;0-9]{0,40}[:=]\s*\S")
 
 
@@ -78,7 +81,10 @@ class TextLines:
             if not row or place + 1 in self.comments:
                 continue
             line = self._lines[place].strip()
-            if layout.delimiter == BLANKS and _KEY_LINE.match(line):
+            setting = _SETTING.fullmatch(line) if layout.delimiter == BLANKS else None
+            if setting is not None:
+                rows[place] = [part for part in setting.groups() if part]
+            elif layout.delimiter == BLANKS and _KEY_LINE.match(line):
                 rows[place] = [line]  # "DUT: SN 12" has as many words as the table has columns, by chance
             elif layout.delimiter == BLANKS:
                 if len(row) != layout.width or any(str(field).endswith(",") for field in row):

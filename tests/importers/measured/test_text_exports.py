@@ -7,6 +7,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 
+from specflow.errors import FileError
 from tests.importers.measured.make import SAID, low, measure, one_table, questions, rejected, taken, text
 
 
@@ -121,3 +122,29 @@ def test_two_numbers_in_a_cell_become_no_remark(tmp_path: Path, cell: str) -> No
         tmp_path / "a.txt", f"Frequency (Hz)\tV(out)/V(in)\tGain (dB)\n1e3\t{cell}\t2\n2e3\t{cell}\t3\n"
     )
     assert "two numbers" in questions(one_table(path))
+
+
+def test_cuts_below_titles_in_a_file_of_an_ending_of_its_own(tmp_path: Path) -> None:
+    lines = ["NAME INVENTED", "FREQUENCY 869.5 MHz", "GAIN 14.2 dBd"]
+    for cut, width in (("HORIZONTAL", 65), ("VERTICAL", 12)):
+        lines += [f"{cut} 36", *(f"{10.0 * step} {step % 19 * width / 100:.2f}" for step in range(36))]
+    path = text(tmp_path / "a.msi", "\n".join(lines))
+    assert [one.cell for table in measure(path).tables for one in table.questions] == ["B5", "B42"]
+    said = {**SAID, "column B": "antenna_gain in dBi"}
+    tables = [taken(table) for table in measure(path, stated=said).tables]
+    for table, cut in zip(tables, ("horizontal", "vertical"), strict=True):
+        assert table.columns is not None
+        conditions = table.columns.conditions
+        assert conditions.text["cut_plane"].word(0) == cut and set(conditions.numeric["frequency"]) == {869.5}
+        assert conditions.numeric["cut_angle"].tolist() == [10.0 * step for step in range(36)]
+        assert "B3: GAIN = 14.2 dBd" in table.unused
+
+
+def test_text_without_columns_of_numbers_stays_a_kind_that_is_not_read(tmp_path: Path) -> None:
+    for name, content in (
+        ("a.py", "x = 1\ny = 2\nz = 3\n"),
+        ("b.log", "\0\1 1 2\n" * 5),
+        ("c.xml", "1 2\n" * 5),
+    ):
+        with pytest.raises(FileError, match="are not read"):
+            measure(text(tmp_path / name, content))
