@@ -52,7 +52,8 @@ class BenchPoint(Document):
     """One value to be measured: what of, at which conditions, on which item, and for which requirements.
 
     ``item`` "" is any item of the block; ``must_be_item``: it may not be another one. ``limits`` has the limit in words
-    of each requirement, ``why`` what is known at the point so far.
+    of each requirement, ``why`` what is known at the point so far, ``at_block`` what the conditions come to at the
+    block itself where a condition map says it (an intermediate frequency, a baseplate).
     """
 
     block: Code
@@ -67,6 +68,7 @@ class BenchPoint(Document):
     requirements: tuple[Code, ...]
     limits: tuple[str, ...]
     why: tuple[str, ...] = ()
+    at_block: str = ""
 
 
 class Role(StrEnum):
@@ -76,6 +78,7 @@ class Role(StrEnum):
     REQUIREMENT = "requirement"
     QUANTITY = "quantity"
     CONDITION = "condition"
+    AT_BLOCK = "at the block"
     LIMIT = "limit"
     UNIT = "unit"
     SO_FAR = "so far"

@@ -189,6 +189,8 @@ class _Layout:
                 return point.limits[0] if alone else "; ".join(f"{code}: {words}" for code, words in pairs)
             case Role.SO_FAR:
                 return "; ".join(point.why)
+            case Role.AT_BLOCK:
+                return point.at_block
             case Role.U_UNIT:
                 return point.u_unit
             case _:
@@ -223,6 +225,8 @@ class _Layout:
             yield BenchColumn(
                 role=Role.CONDITION, title=_dimension_title(name, unit), width=12, dimension=name, unit=unit
             )
+        if any(point.at_block for point in self._points):
+            yield BenchColumn(role=Role.AT_BLOCK, title="That is, at the block", width=34)
         yield BenchColumn(role=Role.LIMIT, title="Limit", width=24)
         yield BenchColumn(role=Role.SO_FAR, title="So far", width=16)
         yield BenchColumn(role=Role.ITEM, title="Item", width=14)

@@ -8,10 +8,11 @@ from itertools import product
 
 import numpy as np
 
-from specflow.conditions import Points, find_dimension
+from specflow.conditions import Points, find_dimension, known_dimension, map_columns
 from specflow.limits.tree import tree_names
 from specflow.model.bench_sheet import BenchCondition
 from specflow.model.columns import Columns, TextColumn
+from specflow.model.conditions import ConditionMap
 from specflow.model.limit import Limit
 from specflow.units import format_value
 
@@ -74,6 +75,26 @@ def recorded_columns(conditions: Sequence[BenchCondition]) -> Columns:
         {one.dimension: TextColumn.of([one.word]) for one in conditions if one.word},
         {one.dimension: one.unit for one in conditions if one.value is not None},
     )
+
+
+def at_block_words(condition_map: ConditionMap | None, conditions: Sequence[BenchCondition]) -> str:
+    """Say what the conditions of a row come to at the block itself; "" where no map says it.
+
+    A row is stated in the terms of its requirement. Who sets the block up alone needs its own: 2 GHz of the system may
+    be 140 MHz of an intermediate frequency.
+    """
+    if condition_map is None:
+        return ""
+    own = map_columns(condition_map, recorded_columns(conditions))
+    said = []
+    for entry in condition_map.entries:
+        if (found := own.numeric.get(entry.target)) is not None and np.isfinite(found[0]):
+            known = known_dimension(entry.target)
+            name = known.title if known else entry.target.replace("_", " ")
+            said.append(
+                f"{name} {format_value(float(f'{found[0]:.9g}'))} {own.units.get(entry.target, '')}".strip()
+            )
+    return "; ".join(said)
 
 
 def _steps(low: float, high: float, step: float) -> list[float]:

@@ -19,7 +19,7 @@ from specflow.limits import LimitContext, evaluate_limit, limit_words
 from specflow.limits.tree import tree_names
 from specflow.model.base import code_key
 from specflow.model.bench_sheet import BenchCondition, BenchPoint
-from specflow.model.conditions import ConditionsSet
+from specflow.model.conditions import ConditionMap, ConditionsSet
 from specflow.model.requirement import Activity, Method, Requirement
 from specflow.model.snapshot import Snapshot
 from specflow.model.verdict import ActivityResult, CloseOut, Label, PointResults, RequirementStatus, Verdict
@@ -27,7 +27,14 @@ from specflow.parameters import suits
 from specflow.reports.points import absent_provers, is_prover, points_of, points_per_item
 from specflow.units import Quantity, format_unit, parse_unit, tolerance_unit
 from specflow.verification.limit_inputs import limit_columns
-from specflow.workflows.bench_rows import bounds_words, conditions_at, inputs_to_note, recorded_columns
+from specflow.verification.map_choice import MapChoice
+from specflow.workflows.bench_rows import (
+    at_block_words,
+    bounds_words,
+    conditions_at,
+    inputs_to_note,
+    recorded_columns,
+)
 from specflow.workflows.evaluate_project import Evaluation
 
 ON_A_BENCH = (Method.TEST, Method.DEMONSTRATION, Method.INSPECTION)
@@ -87,12 +94,14 @@ def missing_points(evaluation: Evaluation, scope: Scope, declared: Mapping[str, 
     snapshot, missing = evaluation.snapshot, Missing()
     blocks = set(map(code_key, scope.blocks))
     wanted = set(map(code_key, scope.requirements))
+    choice = MapChoice.of(snapshot)
     for requirement in snapshot.requirements:
         if wanted and code_key(requirement.id) not in wanted:
             continue
         if blocks and code_key(requirement.block) not in blocks:
             continue
-        _Requirement(requirement, evaluation, scope, declared).collect(missing)
+        own_map = choice.of_requirement(requirement)
+        _Requirement(requirement, evaluation, scope, declared, own_map).collect(missing)
     return missing
 
 
@@ -105,8 +114,10 @@ class _Requirement:
         evaluation: Evaluation,
         scope: Scope,
         declared: Mapping[str, Quantity],
+        own_map: ConditionMap | None,
     ) -> None:
         self._requirement = requirement
+        self._map = own_map
         self._snapshot = evaluation.snapshot
         self._status = evaluation.results.of(requirement.id)
         self._scope = scope
@@ -225,6 +236,7 @@ class _Requirement:
                     requirements=(requirement.id,),
                     limits=(self._limit(place.point, conditions),),
                     why=(place.why,),
+                    at_block=at_block_words(self._map, conditions),
                 )
             )
 

@@ -16,11 +16,12 @@ from hypothesis import strategies as st
 from openpyxl.workbook.workbook import Workbook
 from openpyxl.worksheet.worksheet import Worksheet
 
-from specflow.conditions import make_conditions_set, parse_dimension
+from specflow.conditions import make_conditions_set, parse_dimension, parse_map_entry
 from specflow.errors import DocumentError, FileError
 from specflow.limits import parse_limit
 from specflow.model.base import Document
 from specflow.model.bench_sheet import IDENTITY_SHEET, BenchPoint, identity_lines, identity_of, read_identity
+from specflow.model.conditions import ConditionMap
 from specflow.model.evidence import Supersession
 from specflow.model.requirement import Method, Provers, Requirement, Stage
 from specflow.parameters import load_dictionary
@@ -182,6 +183,24 @@ def test_it_has_exactly_what_is_missing_and_says_what_it_leaves_out(store: Proje
     assert "TBD-1: its limit is to be determined" in left_out
     assert "ANA-1: by analysis, not on a bench" in left_out
     assert "FINE-1: frequency 27.5 to 30 GHz has 2501 values, too many" in left_out
+
+
+def test_what_the_conditions_come_to_at_the_block_itself_stands_beside_them(
+    store: ProjectStore, tmp_path: Path
+) -> None:
+    entries = ("if_frequency = frequency - 26.1 GHz", "temperature_baseplate = temperature_ambient + 20 K")
+    own = ConditionMap(id="CM", block="LNA", entries=tuple(parse_map_entry(one) for one in entries))
+    store.apply(adding(own), by="A. B.")
+    lna, pa = made(store).workbook.sheets
+    said = {point.conditions[:2]: point.at_block for _, point in lna.rows if "G-1" in point.requirements}
+    words = next(words for at, words in said.items() if [one.value for one in at] == [27.5, 85.0])
+    assert words == "intermediate frequency 1.4 GHz; baseplate temperature 105 °C"
+    assert {point.at_block for _, point in pa.rows} == {""}
+    assert [one.title for one in lna.columns if "at the block" in one.title]
+    assert not [one.title for one in pa.columns if "at the block" in one.title]
+    path = fill(written(store, tmp_path / "t.xlsx"), good)
+    attach(store, path)
+    assert all(k == n for k, n in proved(store).values())
 
 
 @pytest.mark.parametrize(
