@@ -162,7 +162,7 @@ def _is_number(value: Value) -> bool:
 
 
 def _unknown(path: Path) -> FileError:
-    known = ", ".join(ending for reader in READERS for ending in reader.endings)
+    known = ", ".join([*(ending for reader in READERS for ending in reader.endings), ".s1p, .s2p ... .ts"])
     remedy = REMEDIES.get(path.suffix.lower(), "")
     return FileError(
         f"files of the kind {path.suffix!r} are not read",

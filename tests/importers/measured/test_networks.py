@@ -609,3 +609,11 @@ def test_a_phase_imbalance_is_given_in_the_turn_of_its_limit(
     requirement = wanted("phase_imbalance").model_copy(update={"limit": parse_limit(limit)})
     [plan] = raw(path, requirement, **names).plans
     assert dict(plan.settings) == ({"near": near} if near else {})
+
+
+def test_a_packed_network_file_is_refused_with_the_endings_that_are_read(tmp_path: Path) -> None:
+    path = tmp_path / "a.s2p.zip"
+    path.write_bytes(b"PK\x05\x06" + bytes(18))
+    with pytest.raises(FileError) as caught:
+        read(path)
+    assert caught.value.hint.startswith("unpack it") and ".s2p ... .ts" in caught.value.hint
