@@ -230,7 +230,6 @@ def _proposal(located: Sequence[LocatedTable], read: Sequence[ReadTable]) -> str
                 [one.meanings for _, one in parts],
                 [one.read_as for one, _ in parts],
                 first.preamble.facts,
-                first.preamble.title,
                 [doubt for one, _ in parts for doubt in one.table.doubts],
             )
         )

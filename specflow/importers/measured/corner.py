@@ -15,6 +15,7 @@ import numpy as np
 from specflow.conditions import Comparison, find_dimension
 from specflow.importers.measured.condition_column import is_temperature
 from specflow.importers.measured.context import Context
+from specflow.importers.measured.found_table import OverColumns
 from specflow.importers.measured.header_cells import HeaderCell
 from specflow.importers.measured.header_text import known_unit, read_header
 from specflow.importers.measured.mapping_parts import UNLOCATED, PivotMapping
@@ -91,8 +92,10 @@ def table_under(grid: Grid, top: int, found: NumberRow, context: Context) -> Fou
     table = table_below(grid, tuple(headers), top, found.label_row, found.row + 1, None, context.recognises)
     dimension = _dimension(grid, found, across, above, label)
     doubts: list[Question] = []
-    pivots = []
+    pivots, over = [], []
+    named, of_unit = dimension or ("", "")
     for columns, quantity, unit, words in groups:
+        over.append(OverColumns(columns, quantity, unit, words, named, of_unit, across or named))
         if (
             dimension is None
             or quantity is None
@@ -101,9 +104,10 @@ def table_under(grid: Grid, top: int, found: NumberRow, context: Context) -> Fou
         ):
             doubts.append(_question(grid, found, columns, dimension, words))
             continue
-        pivots.append(_pivot(grid, columns, dimension, quantity, unit, _carried_unit(grid, found)))
+        pivot = _pivot(grid, columns, dimension, quantity, unit, _carried_unit(grid, found))
+        pivots.append(replace(pivot, over=f"{words} | {across}" if across else words))
     rows = tuple(range(first_row, found.row + 1))
-    return replace(table, pivots=tuple(pivots), doubts=tuple(doubts), title_rows=rows)
+    return replace(table, pivots=tuple(pivots), over=tuple(over), doubts=tuple(doubts), title_rows=rows)
 
 
 def _repeat(grid: Grid, found: NumberRow, columns: Sequence[int]) -> bool:

@@ -11,6 +11,7 @@ from specflow.importers.measured.cells import ColumnCells, Rows, read_column
 from specflow.importers.measured.facts import Fact
 from specflow.importers.measured.header_cells import HeaderCell
 from specflow.importers.measured.mapping_parts import LongMapping, PivotMapping
+from specflow.importers.measured.quantity_text import NamedQuantity
 from specflow.importers.measured.result import Question
 from specflow.importers.readers import Grid
 
@@ -44,6 +45,22 @@ class Axis:
         return self.start + self.step * (rows - self.first).astype(np.float64)
 
 
+@dataclass(frozen=True, slots=True)
+class OverColumns:
+    """What a sheet says over columns of numbers: the quantity and its unit by ``words``, the condition by ``across``.
+
+    ``quantity`` is None, and ``words`` "", where no quantity is named; ``dimension`` is "" where no condition is.
+    """
+
+    columns: tuple[int, ...]
+    quantity: NamedQuantity | None
+    unit: str
+    words: str
+    dimension: str = ""
+    dimension_unit: str = ""
+    across: str = ""
+
+
 @dataclass(frozen=True)
 class FoundTable:
     """A table on a sheet.
@@ -55,7 +72,8 @@ class FoundTable:
 
     ``part`` says which part of a table it is where one was parted (by quantity, by a group of columns), ``facts`` what
     is said of that part alone. ``axis`` is a condition that no column holds, ``pivots`` are columns of one quantity at
-    several conditions, ``long`` says that the quantity stood in the rows. ``doubts`` are questions about where the
+    several conditions, ``over`` what the sheet says over such columns, ``long`` says that the quantity stood in the
+    rows. ``doubts`` are questions about where the
     table stands and how it lies, ``notes`` what is said about that. ``title_rows`` are rows above that belong to the
     headers, ``group_row`` one that is read already. ``words_above`` stand for the headers of a table that has none; one
     without any words is not known again (``has_words``).
@@ -76,6 +94,7 @@ class FoundTable:
     facts: tuple[Fact, ...] = ()
     axis: Axis | None = None
     pivots: tuple[PivotMapping, ...] = ()
+    over: tuple[OverColumns, ...] = ()
     long: LongMapping | None = None
     doubts: tuple[Question, ...] = ()
     notes: tuple[str, ...] = ()

@@ -4,8 +4,12 @@ from __future__ import annotations
 
 import re
 from collections import defaultdict
+from collections.abc import Sequence
+from dataclasses import replace
 
 from specflow.importers.measured.context import Context
+from specflow.importers.measured.found_table import OverColumns
+from specflow.importers.measured.header_cells import HeaderCell
 from specflow.importers.measured.header_text import header_key, read_header
 from specflow.importers.measured.items import item_in
 from specflow.importers.measured.mapping_parts import PivotMapping
@@ -34,10 +38,11 @@ def item_pivots(table: FoundTable, context: Context) -> tuple[tuple[PivotMapping
         named = (
             _quantity(bare, table.headers[places[0]].unit, context)
             if bare
-            else _above(table, places, context)
+            else _quantity(_words_above(table, places[-1]), "", context)
         )
         if named is not None:
-            pivots.append(_pivot(table, template, places, named))
+            words = "" if bare else _words_above(table, places[-1])
+            pivots.append(replace(_pivot(table, template, places, named), over=words))
         elif not bare:
             doubts.append(_question(table, places))
     return tuple(pivots), tuple(doubts)
@@ -53,15 +58,25 @@ def _quantity(text: str, unit: str, context: Context) -> tuple[NamedQuantity, st
     return named, unit
 
 
-def _above(table: FoundTable, places: list[int], context: Context) -> tuple[NamedQuantity, str] | None:
-    """The quantity in the nearest row above, where one text is all that is written over the table."""
-    first, last = table.headers[0].column, table.headers[places[-1]].column
+def said_over_items(
+    table: FoundTable, headers: Sequence[HeaderCell], context: Context
+) -> tuple[OverColumns, ...]:
+    """What is written over columns that are headed by items alone."""
+    words = _words_above(table, table.headers.index(headers[-1]))
+    quantity, unit = _quantity(words, "", context) or (None, "")
+    columns = tuple(header.column for header in headers)
+    return (OverColumns(columns, quantity, unit, words if quantity else ""),)
+
+
+def _words_above(table: FoundTable, place: int) -> str:
+    """The nearest row above, where one text is all that is written over the table up to its header ``place``."""
+    first, last = table.headers[0].column, table.headers[place].column
     for row in range(table.header_row - 1, max(table.top, table.header_row - _ROWS_ABOVE) - 1, -1):
         cells = [table.grid.value(row, column) for column in range(first, last + 1)]
         filled = [value for value in cells if not is_blank(value)]
         if filled:
-            return _quantity(str(filled[0]), "", context) if len(filled) == 1 else None
-    return None
+            return " ".join(str(filled[0]).split()) if len(filled) == 1 else ""
+    return ""
 
 
 def _pivot(

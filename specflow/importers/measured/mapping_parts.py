@@ -75,6 +75,7 @@ class PivotMapping:
 
     ``header`` is a pattern like ``{polarisation} @ {frequency} MHz``. The names in braces are dimensions; ``units``
     gives the unit of the numeric ones. ``columns`` ("C:J") says where they stand; without it all that fit are meant.
+    ``over`` ("Gain (dB)") are the words over the columns that the pivot is meant for, several parted by "|".
     """
 
     header: str
@@ -87,6 +88,7 @@ class PivotMapping:
     bandwidth: str = ""
     spectrum: str = ""
     columns: str = ""
+    over: str = ""
 
     def is_about(self, text: str, name: str) -> bool:
         """Whether the column called ``name`` ("C") with this header is one of them."""

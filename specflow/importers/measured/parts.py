@@ -15,6 +15,7 @@ from specflow.importers.measured.header_text import read_header
 from specflow.importers.measured.item_headers import item_pivots
 from specflow.importers.measured.long_form import find_long, long_parts
 from specflow.importers.measured.mapping_parts import ColumnMapping, LayoutMapping, PivotMapping
+from specflow.importers.measured.over_columns import ask_about_words_over
 from specflow.importers.measured.place_facts import is_reference, stated_here
 from specflow.importers.measured.placed import pivot_of
 from specflow.importers.measured.quantity_text import name_quantity
@@ -45,7 +46,8 @@ def parts_of(table: FoundTable, mapping: LayoutMapping, context: Context) -> lis
     else:
         pivots, doubts = _recognised_pivots(table, context)
         table = replace(table, doubts=(*table.doubts, *doubts))
-    table = replace(table, doubts=tuple(one for one in table.doubts if not _settles(mapping, table, one)))
+    doubts = tuple(one for one in table.doubts if not _settles(mapping, table, one))
+    table = replace(table, doubts=(*doubts, *ask_about_words_over(table, mapping.pivots, context)))
     if pivots and (len(pivots) > 1 or _values_beside(table, replace(read_as, pivots=pivots), context)):
         return _pivot_parts(table, replace(read_as, pivots=pivots), context)
     if not pivots:

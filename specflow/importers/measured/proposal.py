@@ -37,7 +37,8 @@ HEAD = f"""# A mapping of measurement tables: how the columns of each layout are
 # derive:      [[table.derive]] law = "ripple", over = "frequency 17.7..20.2 GHz step 0.1 GHz", requirement = "R-1"
 #              (specflow derive lists the laws; values, where, settings, gives, plane, statistic)
 # pivot:       [table.pivot] header = "Gain @ {{frequency}} GHz", parameter, unit, units = {{ frequency = "GHz" }},
-#              columns = "C:J"; several as [[table.pivot]]
+#              columns = "C:J"; over = "Gain (dB)", the words over the columns it is meant for; several as
+#              [[table.pivot]]
 format = {FORMAT}
 """
 
@@ -56,7 +57,6 @@ class Proposal:
     parts: Sequence[Sequence[ColumnMeaning]]
     read_as: Sequence[LayoutMapping]
     facts: Sequence[Fact]
-    title: str
     doubts: Sequence[Question] = ()
 
 
@@ -119,7 +119,6 @@ def _written(one: Proposal, columns: Sequence[ColumnMapping], when: Mapping[str,
     mapping = replace(
         one.mapping,
         layout=one.key,
-        title=one.mapping.title or one.title,
         sheet=sheet_pattern(one.table),
         columns=tuple(columns),
         pivots=pivots,
