@@ -57,7 +57,11 @@ def _next(grid: Grid, top: int, context: Context) -> tuple[FoundTable, int] | No
     if (
         block is not None
         and (row is None or grid.is_text)
-        and (row is None or block < row or is_far_from(grid, row, block))
+        and (
+            row is None
+            or block < row
+            or (is_far_from(grid, row, block) and not _has_header(grid, block, context))
+        )
     ):
         table = block_table(grid, top, block, context)
         return table, table.stop_row
@@ -77,3 +81,12 @@ def _ended(make: Callable[[Grid], FoundTable], grid: Grid, context: Context) -> 
         return table, table.stop_row
     table = make(grid.cut(CellRange(grid.first_row, grid.first_column, row - 1, grid.last_column)))
     return table, int(table.rows[-1]) + 1 if len(table.rows) else row
+
+
+def _has_header(grid: Grid, block: int, context: Context) -> bool:
+    """Whether the row directly above a block of numbers is its header: a list of markers may stand above that."""
+    above = block - 1
+    if above < grid.first_row or above in grid.comment_rows:
+        return False
+    header = find_header(grid, above, context.recognises)
+    return header is not None and header.row == above and header.is_known

@@ -166,9 +166,9 @@ class TableBody:
         return len(filled) < len(self._named) or any(str(value).rstrip().endswith(":") for value in filled)
 
     def _repeats(self, texts: dict[int, str]) -> bool:
-        return {header_key(text) for text in texts.values()} <= {
-            header_key(header.text) for header in self._headers
-        }
+        """Whether all of these words are the headers of their own columns; in other columns they begin another table."""
+        own = {header.column: header_key(header.text) for header in self._headers}
+        return all(own.get(column) == header_key(text) for column, text in texts.items())
 
     def _begins_another(self, row: int, texts: dict[int, str]) -> bool:
         return all(map(self._recognises, texts.values())) and has_numbers_below(self._grid, row, texts)

@@ -148,3 +148,11 @@ def test_text_without_columns_of_numbers_stays_a_kind_that_is_not_read(tmp_path:
     ):
         with pytest.raises(FileError, match="are not read"):
             measure(text(tmp_path / name, content))
+
+
+def test_markers_above_a_trace_take_no_headers_from_it(tmp_path: Path) -> None:
+    markers = ["Marker,Frequency (GHz),Output power (dBm)", "M1,28,-12.5", "M2,28.5,-14", ""]
+    trace = ["Frequency (GHz),Output power (dBm)", "27.5,-20", "28,-12.5", "28.5,-14", "29,-21"]
+    first, second = measure(text(tmp_path / "a.csv", "\n".join([*markers, *trace]))).tables
+    assert low(taken(first), "Output power") == [-12.5, -14]
+    assert low(taken(second), "Output power") == [-20, -21]  # two readings stand in both
