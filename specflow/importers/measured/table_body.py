@@ -166,7 +166,7 @@ class TableBody:
         return len(filled) < len(self._named) or any(str(value).rstrip().endswith(":") for value in filled)
 
     def _repeats(self, texts: dict[int, str]) -> bool:
-        """Whether all of these words are the headers of their own columns; in other columns they begin another table."""
+        """Whether all of these words are the headers of their own columns."""
         own = {header.column: header_key(header.text) for header in self._headers}
         return all(own.get(column) == header_key(text) for column, text in texts.items())
 
