@@ -130,7 +130,11 @@ def _is_sum(probe: Probe, numbers: Sequence[int]) -> bool:
 
 
 def _allotment(probe: Probe, number: int, low: Floats, high: Floats, words: str) -> Allotment:
-    """Return what a line may be from what it may come to in the sum; an open side keeps the line's tolerance."""
+    """Return what a line may be from what it may come to in the sum.
+
+    An open side keeps the line's tolerance, and where the share is harder than the estimate its whole width: a window
+    narrower than that no block could be built into.
+    """
     read = probe.chain.lines[number]
     factor, offset = _factor(probe, number)
     sides = [
@@ -144,10 +148,10 @@ def _allotment(probe: Probe, number: int, low: Floats, high: Floats, words: str)
     bottom, top = sides
     line, values, tolerance = read.line, read.values, read.line.tolerance
     if tolerance is not None:
-        top = np.where(np.isposinf(top), np.maximum(float(np.max(values)) + tolerance.plus, bottom), top)
-        bottom = np.where(
-            np.isneginf(bottom), np.minimum(float(np.min(values)) - tolerance.minus, top), bottom
-        )
+        width = tolerance.minus + tolerance.plus
+        upmost = np.maximum(float(np.max(values)) + tolerance.plus, bottom + width)
+        lowest = np.minimum(float(np.min(values)) - tolerance.minus, top - width)
+        top, bottom = np.where(np.isposinf(top), upmost, top), np.where(np.isneginf(bottom), lowest, bottom)
     blank = Allotment(
         line.block,
         line.parameter,

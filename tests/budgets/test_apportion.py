@@ -351,3 +351,18 @@ def test_parallel_paths_share_distortion_equally(figure: str, law: str) -> None:
         for order in orders.values()
     ]
     assert max(alone) - min(alone) < 0.05
+
+
+@pytest.mark.parametrize(("limit", "asked"), [(30.0, 0.5), (30.3, 0.65), (34.0, 2.5)])
+def test_a_gain_that_has_to_be_harder_keeps_the_width_of_its_tolerance(limit: float, asked: float) -> None:
+    within = {"tolerance": {"minus": 0.5, "plus": 0.5, "meaning": "limits"}}
+    chain = a_chain(
+        {"block": "A", "gain": 18.0, "more": {"gain": within}},
+        {"block": "B", "gain": 11.0, "more": {"gain": within}},
+        parameter="gain",
+    )
+    found = apportion(chain, project_of(chain, limit=at_least(limit)), DICTIONARY, way="equal")
+    windows = {one.block: (one.low, one.high) for one in found.allotments}
+    assert windows["A"] == (pytest.approx(18.0 + asked), pytest.approx(19.0 + asked))
+    assert windows["B"] == (pytest.approx(11.0 + asked), pytest.approx(12.0 + asked))
+    assert found.closure.closes is True
