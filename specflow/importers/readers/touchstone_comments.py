@@ -34,7 +34,7 @@ _OTHER_AXIS = re.compile(
     r"\b(?:p_?in|p_?out|p_?avs?|p_?drive|p_?rf|power|pwr|dbm|v_?bias|voltage|current|bias|temp\w*|time|v_?gs?|v_?ds?)\b",
     re.IGNORECASE,
 )
-_VARIABLE = r"(?:power|pwr|p_?in|level|v_?gs?|bias|voltage|temp(?:erature)?|time|cw)"
+_VARIABLE = r"(?:power|pwr|p_?in|level|v_?gs?|bias|voltage|temp(?:erature)?|(?<!real[ -])time|cw)"
 _SWEPT = re.compile(
     rf"\b{_VARIABLE}[ _-]+(?:(?:is|was)\s+)?(?:sweep|swept)\b|\bswept[ _-]+{_VARIABLE}\b"
     r"|\b(?:start|stop)(?: power| level)?\s*[=:]?\s*[-+\d.]+\s*dBm\b"

@@ -484,7 +484,7 @@ def test_a_sweep_over_time_is_no_sweep_over_frequency(tmp_path: Path, above: str
 
 def test_a_sweep_time_in_a_header_is_no_x_axis(tmp_path: Path) -> None:
     path = tmp_path / "a.s2p"
-    path.write_text(f"! Sweep time: 0.5 s, measured at time 12:03\n# GHz S MA R 50\n{ROWS}")
+    path.write_text(f"! Sweep time: 0.5 s, real-time sweep off, at time 12:03\n# GHz S MA R 50\n{ROWS}")
     assert raw(path).questions == ()
 
 
