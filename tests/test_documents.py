@@ -24,7 +24,16 @@ _FROM = (
     ROOT / "tests/benchmarks",
     *(
         SOURCES / name
-        for name in ("", "model", "parameters", "workflows", "derive", "importers", "importers/readers")
+        for name in (
+            "",
+            "model",
+            "parameters",
+            "workflows",
+            "derive",
+            "importers",
+            "importers/readers",
+            "importers/measured",
+        )
     ),
 )
 
