@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
@@ -17,6 +18,8 @@ from specflow.model.conditions import ConditionsSet, Dimension
 from specflow.units import compatible, convert, parse_number, parse_quantity, parse_unit, tolerance_unit
 
 Rows = NDArray[np.intp]
+
+_NAME_BEFORE_FIGURES = re.compile(r"([^\W\d]+(?: [^\W\d]+)*) +([-+−±(]?[ .,]?\d.*)", re.DOTALL)
 
 
 @dataclass(frozen=True, slots=True)
@@ -44,13 +47,23 @@ def read_over(text: str) -> SaidRange:
 
 
 def _dimension(text: str, where: str) -> Dimension:
-    name, colon, rest = text.partition(":")
-    if not colon:
-        name, _, rest = text.strip().partition(" ")
+    name, rest = _name_apart(text)
     try:
         return parse_dimension(f"{name}: {rest}", corners=not _says_step(rest))
     except ConditionsError as error:
         raise DocumentError(error.message, where=f"{where} {text!r}", hint=error.hint) from None
+
+
+def _name_apart(text: str) -> tuple[str, str]:
+    """Take "input level -15..12 dBm" apart, with or without a colon: a name may have several words, no figures."""
+    name, colon, rest = text.partition(":")
+    if colon:
+        return name, rest
+    found = _NAME_BEFORE_FIGURES.match(" ".join(text.split()))
+    if found:
+        return found[1], found[2]
+    name, _, rest = text.strip().partition(" ")
+    return name, rest
 
 
 def _says_step(text: str) -> bool:

@@ -23,6 +23,7 @@ from specflow.reports.figures import (
     verdict_tone,
 )
 from specflow.reports.origins import OriginFinder
+from specflow.units import bandwidth_words
 
 # What a board asks first stands first, and is what a narrow page prints: where it stands, why, and in which cell that
 # can be looked up. What describes the requirement follows.
@@ -147,14 +148,6 @@ def quantity_words(requirement: Requirement, dictionary: Dictionary) -> str:
     if quantity.polarisation:
         parts.append(quantity.polarisation)
     return ", ".join(parts)
-
-
-def bandwidth_words(hertz: float) -> str:
-    """Return a bandwidth in the unit people use for its size."""
-    for factor, unit in ((1e9, "GHz"), (1e6, "MHz"), (1e3, "kHz")):
-        if hertz >= factor:
-            return f"{hertz / factor:g} {unit}"
-    return f"{hertz:g} Hz"
 
 
 def _where_it_stands(status: RequirementStatus, finder: OriginFinder) -> dict[str, ReportCell]:

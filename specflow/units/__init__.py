@@ -27,7 +27,14 @@ from specflow.units.kinds import Kind, Spectrum
 from specflow.units.number import parse_number
 from specflow.units.parse import parse_unit
 from specflow.units.planes import missing_between_planes
-from specflow.units.quantity import Quantity, format_quantity, format_value, parse_quantity, split_quantity
+from specflow.units.quantity import (
+    Quantity,
+    bandwidth_words,
+    format_quantity,
+    format_value,
+    parse_quantity,
+    split_quantity,
+)
 from specflow.units.tolerance import closeness, same_within, to_tolerance, tolerance_unit
 from specflow.units.unit import DB_HERTZ, DECIBEL, KELVIN, ONE, PERCENT, Unit, format_unit
 
@@ -70,6 +77,7 @@ __all__ = [
     "Unit",
     "add",
     "bandwidth_bounds",
+    "bandwidth_words",
     "closeness",
     "compare",
     "compatible",

@@ -18,6 +18,7 @@ from specflow.units.unit import ONE, Unit, format_unit
 
 _NUMBER = re.compile(r"^[+-]? ?(?:\d{1,3}(?:[ '’]\d{3})+(?!\d)(?:[.,]\d+)?|[\d.,]*\d(?:[eE][+-]?\d+)?\.?)")
 _DIGITS = 12
+_SIZES = (("GHz", 1e9), ("MHz", 1e6), ("kHz", 1e3), ("Hz", 1.0))
 
 
 @dataclass(frozen=True, slots=True)
@@ -74,3 +75,9 @@ def format_value(value: float, *, decimals: int | None = None) -> str:
 
 def _without_minus_zero(number: str) -> str:
     return number[1:] if number.startswith("-") and not number.strip("-0.") else number
+
+
+def bandwidth_words(hertz: float) -> str:
+    """Say a bandwidth in the unit people use for its size: "1.4 MHz"."""
+    unit, size = next((one for one in _SIZES if hertz >= one[1]), _SIZES[-1])
+    return f"{format_value(hertz / size)} {unit}"

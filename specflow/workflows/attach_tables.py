@@ -34,7 +34,9 @@ def preview_lines(preview: AttachPreview) -> list[str]:
     lines += [f"{finding.message} ({finding.remedy})" if finding.remedy else finding.message
               for finding in preview.measurements.findings]  # fmt: skip
     for document in preview.mapping_documents:
-        lines.append(f"the mapping is kept as {document.id}; files of this layout are recognised from now on")
+        lines.append(
+            f"stored with the values: the mapping, kept as {document.id}; files of this layout are then recognised"
+        )
     for place, code in preview.known.items():
         lines.append(
             f"{preview.measurements.tables[place].place}: unchanged, its values are stored as {code}"

@@ -6,6 +6,7 @@ import numpy as np
 import pytest
 from scipy.integrate import quad
 
+from specflow.errors import CalculationError
 from tests.derive.deriving import value_of
 
 OFFSET, DENSITY = [1e3, 1e4, 1e5, 1e6, 1e7], [-80.0, -90, -100, -120, -140]
@@ -42,3 +43,11 @@ def test_offsets_in_other_units_are_the_same() -> None:
         "phase error", [one / 1e3 for one in OFFSET], DENSITY, unit="dBc/Hz", axis="offset", axis_unit="kHz"
     )
     assert found == pytest.approx(0.6061, abs=5e-5)
+
+
+@pytest.mark.parametrize("span", [(1e2, 1e7), (1e3, 2e7)])
+def test_an_integral_beyond_the_readings_is_refused_in_words(span: tuple[float, float]) -> None:
+    with pytest.raises(
+        CalculationError, match="reaches beyond the readings: there is offset 1000 to 10000000 Hz"
+    ):
+        value_of("phase error", OFFSET, DENSITY, unit="dBc/Hz", span=span, **AXIS)

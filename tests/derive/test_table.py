@@ -258,6 +258,13 @@ def test_ranges_are_read_strictly(over: str, message: str) -> None:
         derived_of("worst", swept(), over=over)
 
 
+@pytest.mark.parametrize("name", ["input_level", "input level", "input level:", "Input  level"])
+def test_the_name_of_a_range_may_have_several_words(name: str) -> None:
+    sweep = a_trace(values={"Gain": [20.0, 20.0, 19.5]}, input_level=[-10.0, -5.0, 0.0])
+    found = derived_of("worst", sweep, over=f"{name} -10..0 dBm")
+    assert found.columns.values["gain"].low.tolist() == [19.5]
+
+
 def test_rows_without_a_value_in_every_column_are_left_out_and_none_is_refused() -> None:
     kinds = {"A": {"parameter": "gain"}, "B": {"parameter": "gain"}}
     pair = a_trace(values={"A": [np.nan, 5.0], "B": [1.0, 2.0]}, quantities=kinds, frequency=[1, 2])

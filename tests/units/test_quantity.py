@@ -8,7 +8,15 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from specflow.errors import UnitError
-from specflow.units import Quantity, format_quantity, format_value, parse_quantity, parse_unit, split_quantity
+from specflow.units import (
+    Quantity,
+    bandwidth_words,
+    format_quantity,
+    format_value,
+    parse_quantity,
+    parse_unit,
+    split_quantity,
+)
 
 
 @pytest.mark.parametrize(
@@ -96,3 +104,11 @@ def test_a_written_quantity_reads_back_to_itself(digits: int, places: int, unit:
 @given(st.floats(allow_nan=False, allow_infinity=False, min_value=-1e15, max_value=1e15))
 def test_a_written_value_is_the_value_to_twelve_digits(value: float) -> None:
     assert float(format_value(value)) == pytest.approx(value, rel=1e-11)
+
+
+@pytest.mark.parametrize(
+    ("hertz", "words"),
+    [(1e6, "1 MHz"), (1.4e6, "1.4 MHz"), (4e4, "40 kHz"), (300.0, "300 Hz"), (2e9, "2 GHz")],
+)
+def test_a_bandwidth_is_said_in_the_unit_of_its_size(hertz: float, words: str) -> None:
+    assert bandwidth_words(hertz) == words

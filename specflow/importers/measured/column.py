@@ -13,6 +13,7 @@ from specflow.importers.measured.tables import FoundTable
 from specflow.importers.measured.unit_source import FoundUnit, find_unit
 from specflow.model.evidence import SpectrumKind
 from specflow.model.parameter import Parameter, QuantityIdentity
+from specflow.units import bandwidth_words
 
 
 @dataclass(frozen=True, slots=True)
@@ -131,5 +132,5 @@ def _quantity_words(quantity: QuantityIdentity) -> list[str]:
     words = [quantity.parameter.replace("_", " ")]
     words += [f"at {quantity.plane}"] if quantity.plane else []
     words += [part for part in (quantity.statistic, quantity.polarisation) if part]
-    words += [f"per {quantity.bandwidth_hz:g} Hz"] if quantity.bandwidth_hz else []
+    words += [f"per {bandwidth_words(quantity.bandwidth_hz)}"] if quantity.bandwidth_hz else []
     return words

@@ -25,13 +25,12 @@ from specflow.model.limit import Limit, LimitState, MeasuredIn, TestTolerance
 from specflow.model.parameter import Parameter, QuantityIdentity
 from specflow.model.requirement import Obligation, OpenValue, Requirement, Source
 from specflow.parameters import Candidate
-from specflow.units import convert, format_value, parse_quantity, parse_unit
+from specflow.units import bandwidth_words, convert, parse_quantity, parse_unit
 
 _ALWAYS = frozenset({"", "u", "always", "all", "unconditional"})
 _NONE = frozenset({"none", "no conditions"})
 _NOT_STATED = frozenset({"n/a", "n.a.", "na", "none", "no limit"})
 _DEFAULT_TAKEN = "workbook-default-taken"
-_SIZES = (("GHz", 1e9), ("MHz", 1e6), ("kHz", 1e3), ("Hz", 1.0))
 
 
 def read(rows: Sequence[SheetRow], intake: Intake) -> None:
@@ -238,7 +237,7 @@ def _bandwidth(row: SheetRow, intake: Intake, parameter: Parameter, limit: Limit
         row.fault(
             "bandwidth",
             f"the reference bandwidth is {row.text('bandwidth')}, but the limit {limit.text if limit else ''} "
-            f"is per {_bandwidth_words(implied)}",
+            f"is per {bandwidth_words(implied)}",
             "state the same bandwidth in both, or leave this cell empty",
         )
     found = stated if stated is not None else implied
@@ -257,11 +256,6 @@ def _bandwidth(row: SheetRow, intake: Intake, parameter: Parameter, limit: Limit
             rule="workbook-no-bandwidth",
         )
     return found
-
-
-def _bandwidth_words(hertz: float) -> str:
-    unit, size = next((one for one in _SIZES if hertz >= one[1]), _SIZES[-1])
-    return f"{format_value(hertz / size)} {unit}"
 
 
 def _implied_bandwidth(limit: Limit) -> float | None:
