@@ -11,7 +11,7 @@ from dataclasses import dataclass, replace
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.facts import Fact, pair_in
 from specflow.importers.measured.header_cells import HeaderCell
-from specflow.importers.measured.header_text import header_key
+from specflow.importers.measured.header_text import header_key, known_unit, read_header
 from specflow.importers.measured.items import is_item
 from specflow.importers.measured.names import canonical
 from specflow.importers.measured.place_facts import amounts_of
@@ -32,9 +32,11 @@ def group_parts(table: FoundTable, context: Context) -> list[FoundTable]:
     row = table.header_row - 1
     if row < table.top or row < table.grid.first_row:
         return [table]
-    groups = _groups(table, row, context)
+    named = _with_names_above(table, row)
+    groups = _groups(named, row, context)
     if len(groups) < 2:
         return [table]
+    table = named
     grouped = {header.column for group in groups for header in group.headers}
     shared = [header for header in table.headers if header.column not in grouped]
     if not shared and not _repeat(groups):
@@ -55,6 +57,22 @@ def group_parts(table: FoundTable, context: Context) -> list[FoundTable]:
     return parts
 
 
+def _with_names_above(table: FoundTable, row: int) -> FoundTable:
+    """Join a header that is a unit alone, "(dBm)", with the word over it: "Pin" beside the cells that make groups."""
+    return replace(table, headers=tuple(_named(table, header, row) for header in table.headers))
+
+
+def _named(table: FoundTable, header: HeaderCell, row: int) -> HeaderCell:
+    above = table.grid.value(row, header.column)
+    is_unit = not read_header(header.text).name and known_unit(header.text.strip("()[] ")) is not None
+    if not is_unit or not isinstance(above, str) or is_blank(above):
+        return header
+    if table.grid.merged_range(row, header.column) is not None or read_header(above).unit:
+        return header
+    unit = header.text.strip("()[] ")
+    return replace(header, row=row, text=f"{' '.join(above.split())} ({unit})")
+
+
 def _groups(table: FoundTable, row: int, context: Context) -> list[Group]:
     """The groups of the row above, where all that is written over the headers makes one."""
     grid = table.grid
@@ -64,7 +82,10 @@ def _groups(table: FoundTable, row: int, context: Context) -> list[Group]:
     ]
     groups: list[Group] = []
     is_merged = True
+    names = {header.column for header in table.headers if header.row == row}
     for place, start in enumerate(starts):
+        if start in names:
+            continue
         text = " ".join(str(grid.value(row, start)).split())
         fact = fact_of(text, grid.address(row, start), row, context)
         if fact is None:

@@ -154,13 +154,16 @@ class _Locator:
         self._number += 1
         for part, read_as in parts_of(table, mapping, self._context):
             part = replace(part, doubts=(*part.doubts, *doubts))
+            said = [
+                fact for fact in facts if fact.row != part.group_row
+            ]  # each group has its own of that row
             self.found.tables.append(
                 LocatedTable(
                     part,
                     key,
                     mapping,
                     settled.source if settled else "",
-                    Preamble((*part.facts, *facts), title),
+                    Preamble((*part.facts, *said), title),
                     tuple(sheet_facts),
                     read_as,
                     kept_under(key, mapping),
