@@ -21,7 +21,10 @@ _DTYPES = {name: np.dtype(name) for name in (FLOAT, INTEGER)}
 
 
 class PackedColumn(NamedTuple):
-    """One column of one evidence table as it is stored; ``data`` are ``rows`` entries of ``dtype``."""
+    """One column of one evidence table as it is stored; ``data`` are ``rows`` entries of ``dtype``.
+
+    What is to be written is the memory of the array itself, where that is as it is stored: columns may be of millions.
+    """
 
     role: str
     name: str
@@ -30,7 +33,7 @@ class PackedColumn(NamedTuple):
     labels: str | None
     rows: int
     sha256: str
-    data: bytes
+    data: bytes | memoryview
 
 
 def pack(table: EvidenceTable, columns: EvidenceColumns) -> list[PackedColumn]:
@@ -116,7 +119,10 @@ def _packed(columns: EvidenceColumns) -> Iterator[PackedColumn]:
 
 
 def _floats(role: str, name: str, numbers: NDArray[Any], unit: str = "") -> PackedColumn:
-    return _column(role, name, np.asarray(numbers, FLOAT) + 0.0, FLOAT, unit=unit)  # + 0.0: no −0 is stored
+    entries = np.asarray(numbers, FLOAT)
+    if (np.signbit(entries) & (entries == 0)).any():
+        entries = entries + 0.0  # no −0 is stored
+    return _column(role, name, entries, FLOAT, unit=unit)
 
 
 def _integers(role: str, name: str, numbers: NDArray[Any], labels: str | None = None) -> PackedColumn:
@@ -131,7 +137,7 @@ def _words(role: str, name: str, words: TextColumn) -> PackedColumn:
 def _column(
     role: str, name: str, entries: NDArray[Any], dtype: str, labels: str | None = None, unit: str = ""
 ) -> PackedColumn:
-    data = np.ascontiguousarray(entries, dtype).tobytes()
+    data = np.ascontiguousarray(entries, dtype).data.toreadonly().cast("B") if len(entries) else b""
     return PackedColumn(role, name, unit, dtype, labels, len(entries), hashlib.sha256(data).hexdigest(), data)
 
 

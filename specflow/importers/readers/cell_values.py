@@ -55,7 +55,8 @@ class _GrowingColumn:
     def finished(self, first_row: int, last_row: int) -> TypedColumn:
         """The column between two rows, both included."""
         numbers = _grown(self._numbers, last_row, np.nan, exact=True) if len(self._numbers) else None
-        codes = _grown(self._codes, last_row, -1, exact=True) if len(self._codes) else None
+        stop = last_row if numbers is None else min(last_row, len(self._codes))
+        codes = _grown(self._codes, stop, -1, exact=True) if len(self._codes) else None
         return TypedColumn(
             None if numbers is None else numbers[first_row - 1 :],
             None if codes is None else codes[first_row - 1 :],
@@ -63,10 +64,10 @@ class _GrowingColumn:
 
 
 def _grown(array: NDArray[Any], size: int, empty: float, exact: bool = False) -> NDArray[Any]:
-    """The array with at least ``size`` elements."""
+    """The array with at least ``size`` elements, and with few to spare."""
     before = len(array)
     if exact or size > before:
-        array.resize(size if exact else max(size + size // 4, 4096), refcheck=False)
+        array.resize(size if exact else max(size + size // 16, 4096), refcheck=False)
         array[before:] = empty
     return array
 

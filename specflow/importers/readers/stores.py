@@ -139,7 +139,8 @@ class CutStore(CellStore):
 @dataclass(frozen=True, slots=True)
 class TypedColumn:
     """One column: ``numbers`` with NaN where a cell is no number (None: there is none), ``codes`` into the words of the
-    store, -1 where a cell is no word (None: there is none). A cell that is neither is empty."""
+    store, -1 where a cell is no word (None: there is none). A cell that is neither is empty. ``codes`` may end above
+    the last row of a column of numbers; below there are no words. Most such columns have one alone, in their header."""
 
     numbers: Floats | None
     codes: Codes | None
@@ -168,7 +169,7 @@ class TypedColumns(CellStore):
         if place >= self.width:
             return ""
         column = self._columns[place]
-        if column.codes is not None and (code := int(column.codes[row])) >= 0:
+        if column.codes is not None and row < len(column.codes) and (code := int(column.codes[row])) >= 0:
             return self._words[code]
         if column.numbers is None:
             return ""
@@ -198,7 +199,8 @@ class TypedColumns(CellStore):
         numbers = np.full(count, np.nan) if column.numbers is None else locked(column.numbers[start:stop])
         other = np.isinf(numbers)
         if column.codes is not None:
-            other |= ~self._blank[column.codes[start:stop]]
+            codes = column.codes[start:stop]
+            other[: len(codes)] |= ~self._blank[codes]
         return numbers, other
 
     def coded(self, place: int, start: int, stop: int) -> Coded | None:
@@ -207,7 +209,10 @@ class TypedColumns(CellStore):
             column.numbers is not None and not np.isnan(column.numbers[start:stop]).all()
         ):
             return None
-        return Coded(locked(column.codes[start:stop]), self._words)
+        codes = column.codes[start:stop]
+        if len(codes) < stop - start:
+            codes = np.pad(codes, (0, stop - start - len(codes)), constant_values=-1)
+        return Coded(locked(codes), self._words)
 
     def has_numbers(self, place: int, start: int, stop: int) -> bool:
         column = self._columns[place] if place < self.width else TypedColumn(None, None)
