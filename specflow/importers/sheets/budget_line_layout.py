@@ -95,7 +95,8 @@ LAYOUT = SheetLayout(
             required=True,
             guidance=(
                 "gain, insertion_loss, noise_figure, iip3, oip3, op1db, antenna_gain; intercepts name their port. Also "
-                "image_rejection, rejection, dc_power, drain_efficiency, phase_noise, blocking_level."
+                "snr (what a receiver needs, its implementation loss with it), image_rejection, rejection, dc_power, "
+                "drain_efficiency, phase_noise, blocking_level."
             ),
             example="gain",
         ),
