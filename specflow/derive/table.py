@@ -82,6 +82,7 @@ def _add_group(
     apart = {*axes, *rows.told_apart}
     try:
         taken, gap = _taken(request.law, rows, axes, over, group)
+        taken, twice = _once(request, rows, axes, over, taken)
         outcome = request.law.function(_samples(request, rows, axes, over, taken))
         _check_outcome(request, outcome)
     except (CalculationError, UnitError) as error:
@@ -92,6 +93,10 @@ def _add_group(
     found.at.extend(at)
     found.results.extend(_results(found, request, rows, apart, taken, outcome, at))
     found.notes.update(dict.fromkeys(outcome.notes))
+    if twice:
+        found.notes.setdefault(
+            f"{twice} of the readings stand twice with the same values and were taken once"
+        )
     found.outcomes.append((taken, outcome))
 
 
@@ -140,6 +145,21 @@ def _taken(
     along = axes[over.dimension][group]
     covered = covered_rows(along, has_value, over.range, over.dimension, over.unit, brackets=law.brackets)
     return group[covered.rows], covered.largest_gap
+
+
+def _once(
+    request: Request, rows: Joined, axes: Mapping[str, Floats], over: SaidRange | None, taken: Rows
+) -> tuple[Rows, int]:
+    """Drop rows that say the same as the one before them at the same place, as where two segments of a sweep meet."""
+    if over is None or request.law.takes_repeats or len(taken) < 2:
+        return taken, 0
+    same = np.diff(axes[over.dimension][taken]) == 0
+    for role in request.roles if same.any() else ():
+        own = rows.readings(role.name).take(taken)
+        parts = (own.low, own.high) if own.u is None else (own.low, own.high, own.u)
+        for part in parts:
+            same &= (part[1:] == part[:-1]) | (np.isnan(part[1:]) & np.isnan(part[:-1]))
+    return taken[np.concatenate([[True], ~same])], int(np.count_nonzero(same))
 
 
 def _samples(
