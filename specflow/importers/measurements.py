@@ -13,6 +13,7 @@ from specflow.importers.measured.context import Context
 from specflow.importers.measured.document import PROVISIONAL_FILE
 from specflow.importers.measured.evidence import ReadTable, read_table
 from specflow.importers.measured.layout import sheet_pattern
+from specflow.importers.measured.letters import with_letter_doubts
 from specflow.importers.measured.located import GivenMappings, LocatedTable, Mappings, locate_tables
 from specflow.importers.measured.mapping import read_mappings, write_mapping
 from specflow.importers.measured.mapping_parts import LayoutMapping
@@ -90,6 +91,7 @@ def read_measurements(
         if found.outside:
             findings.append(_outside(grid, found.outside))
     findings += [_unused(file.fingerprint.name, layout, mapping_name) for layout in mappings.unused()]
+    located = with_letter_doubts(located, person)
     read = [_read(one, context, person, include_hidden_rows) for one in located]
     tables = without_repeats([one.table for one in read])
     findings += [finding for table in tables for finding in table.findings]

@@ -7,7 +7,7 @@ from datetime import date, datetime
 from functools import lru_cache
 
 _LAYOUTS = ("%Y-%m-%d", "%Y/%m/%d", "%Y%m%d", "%d %B %Y", "%d %b %Y", "%d-%b-%Y", "%B %d, %Y", "%b %d, %Y",
-            "%b %d %Y", "%B %d %Y", "%Y.%m.%d")  # fmt: skip
+            "%b %d %Y", "%B %d %Y", "%Y.%m.%d", "%d.%b %Y", "%d. %b %Y", "%d. %B %Y", "%d.%b.%Y")  # fmt: skip
 
 _TIME = re.compile(
     r"[ T,]+\d{1,2}:\d{2}(?::\d{2}(?:\.\d+)?)?(?: ?[AaPp]\.?[Mm]\.?)?(?: ?(?:Z|UTC|GMT|[+\-]\d{2}:?\d{2}))?"

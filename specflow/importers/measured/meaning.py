@@ -128,7 +128,7 @@ class _Reader:
         """What the person says of this column: a role, a dimension or a parameter, perhaps "in" a unit."""
         letter = header.letter
         for key, text in self._stated.columns.items():
-            if key.upper() == letter or header_key(key) == header_key(header.text):
+            if key.upper() in (letter, header.cell) or header_key(key) == header_key(header.text):
                 what, _, unit = (part.strip() for part in text.partition(" in "))
                 scale, unit = scaled_unit(unit)
                 entry = ColumnMapping(column=letter, unit=unit, scale=scale)

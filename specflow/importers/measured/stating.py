@@ -159,6 +159,10 @@ class _Collector:
 
     def _take_name(self, name: str, key: str, text: str, by: str, cell: str) -> None:
         text = day_first(key, text) if name == "date" else text
+        known = self.stated.said.get(name)
+        if name == "date" and cell and known is not None and known.by == PERSON and read_day(text) is None:
+            self._leave(key, text, cell)
+            return
         if name == "date" and read_day(text) is None:
             self._ask(key, cell, f"{text!r} is no date with one meaning", "say --state date=YYYY-MM-DD")
             return
@@ -220,6 +224,10 @@ class _Collector:
             return
         else:
             found = _number(name, known.unit, text, read_header(key).unit, by)
+        said = self.stated.conditions.get(name)
+        if isinstance(found, str) and said is not None and said.by == PERSON:
+            self._leave(key, text, cell)
+            return
         if isinstance(found, str):
             self.stated.doubts.setdefault(
                 name, Question(key, cell, found, f"say --state {name}=VALUE with its unit")

@@ -156,3 +156,26 @@ def test_markers_above_a_trace_take_no_headers_from_it(tmp_path: Path) -> None:
     first, second = measure(text(tmp_path / "a.csv", "\n".join([*markers, *trace]))).tables
     assert low(taken(first), "Output power") == [-12.5, -14]
     assert low(taken(second), "Output power") == [-20, -21]  # two readings stand in both
+
+
+def test_a_letter_that_stands_for_unlike_columns_is_asked_about(tmp_path: Path) -> None:
+    trace = ["Offset (Hz),Phase Noise (dBc/Hz)", "1E3,-80", "1E4,-100", "1E5,-120"]
+    spurs = ["Spurs", "Offset (Hz),Level (dBc)", "2E4,-78", "3E5,-91"]
+    path = text(tmp_path / "a.csv", "\n".join([*trace, "", *spurs]))
+    for table in measure(path, stated={**SAID, "column B": "spurious_relative in dBc"}).tables:
+        assert "no letter alone" in questions(table)
+    first, second = measure(path, stated={**SAID, "column B7": "spurious_relative in dBc"}).tables
+    assert first.document is not None and first.document.values[0].quantity.parameter == "phase_noise"
+    assert second.document is not None and second.document.values[0].quantity.parameter == "spurious_relative"
+
+
+@pytest.mark.parametrize(
+    ("line", "key", "said"),
+    [("FREQUENCY\t869.5", "frequency", "28 GHz"), ("Date\t01/02/2026", "date", "2026-02-01")],
+)
+def test_what_the_person_says_settles_what_the_file_leaves_open(
+    tmp_path: Path, line: str, key: str, said: str
+) -> None:
+    path = text(tmp_path / "a.txt", f"{line}\nSupply voltage (V)\tGain (dB)\n3\t20\n4\t21\n5\t22\n")
+    assert key in questions(one_table(path)) or "no date" in questions(one_table(path))
+    assert low(taken(one_table(path, stated={**SAID, key: said})), "Gain") == [20, 21, 22]
