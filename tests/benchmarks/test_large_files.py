@@ -34,7 +34,7 @@ MOST_TIMES_WORKBOOK = 2.0
 MOST_TIMES_TEXT = 3.0
 MOST_TIMES_PREVIEW = 2.0
 MOST_MEGABYTES_WORKBOOK = 300
-MOST_MEGABYTES_TEXT = 500
+MOST_MEGABYTES_TEXT = 350
 
 TITLES = (
     "Item", "Mode", "f (GHz)", "T_amb (°C)", "Vdd (V)", "Duty (%)", "EIRP (dBm)", "Gain (dB)", "NF (dB)",

@@ -63,7 +63,7 @@ class _Reading:
     def __init__(self, source: Source, content: bytes, head: int, find_layout: FindLayout) -> None:
         self._source = source
         self._content = content
-        ends = np.flatnonzero(np.frombuffer(content, np.uint8) == ord("\n"))
+        ends = _line_ends(content)
         after = ends + 1 if content.endswith(b"\n") else np.append(ends + 1, len(content) + 1)
         self._starts: NDArray[np.int64] = np.concatenate(([0], after))
         self._head = head
@@ -173,6 +173,16 @@ class _Reading:
             return None
         fits = numbers.shape == (stop - first, self._layout.width) and bool(np.isfinite(numbers).all())
         return numbers if fits else None
+
+
+def _line_ends(content: bytes) -> NDArray[np.int64]:
+    """Where the line ends stand; found piece by piece, so that no array of the size of the file is made."""
+    whole = np.frombuffer(content, np.uint8)
+    places = [
+        np.flatnonzero(whole[start : start + BLOCK] == ord("\n")) + start
+        for start in range(0, len(whole), BLOCK)
+    ]
+    return np.concatenate(places)
 
 
 class TextColumns(CellStore):
