@@ -43,6 +43,10 @@ format = {FORMAT}
 """
 
 
+#: Where a unit stands that is no part of the layout: the next file of it may have another there.
+_OF_THIS_FILE = ("stated in ", "the number format ", "the text of the cells")
+
+
 @dataclass(frozen=True, slots=True)
 class Proposal:
     """One table as it was understood: its layout, the mapping it was read by, what it was parted into, what was said.
@@ -138,7 +142,8 @@ def _reason(meaning: ColumnMeaning) -> str:
 def _entry(meaning: ColumnMeaning, mapping: LayoutMapping) -> ColumnMapping:
     letter = meaning.letter
     beside = meaning.by_row or meaning.by_cell or meaning.header.unit_from
-    unit = "" if beside else meaning.unit  # one unit for all would override those beside
+    beside = beside or meaning.unit_from.startswith(_OF_THIS_FILE)
+    unit = "" if beside else meaning.unit  # one unit for all would override those beside, or those of the next file
     used = mapping.column(meaning.header.text, letter)
     if used is not None:
         return used

@@ -128,7 +128,7 @@ def _other_ratio(heading: Heading, parameter: Parameter) -> str:
 def _other_unit(unit: FoundUnit, stated: Stated) -> str:
     """Say that the file states another unit of the same quantity than the column has: dBm above, dBW in the header."""
     said = stated.said.get("unit")
-    if said is None or said.by in (PERSON, MAPPING) or unit.source in (PERSON, "the mapping"):
+    if said is None or said.by in (PERSON, MAPPING) or unit.source == PERSON:
         return ""
     written, own = known_unit(said.text), known_unit(unit.unit)
     if written is None or own is None or written == own or not brought(written, own):
