@@ -103,6 +103,8 @@ class _Styles:
         if key not in self._made:
             options: dict[str, Any] = {"valign": "top", "text_wrap": not number_format, **FILLS[tone]}
             options["align"] = align.value
+            if align is Align.RIGHT:
+                options["indent"] = 1  # or figures touch the words of the next column
             if number_format:
                 options["num_format"] = number_format
             if depth:

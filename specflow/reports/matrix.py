@@ -42,7 +42,7 @@ MATRIX_COLUMNS = (
     ReportColumn(key="governed_at", title="Governed at", width=30),
     ReportColumn(key="item", title="Item", width=12),
     ReportColumn(key="evidence", title="Governing cell", width=36),
-    ReportColumn(key="findings", title="Findings", width=12),
+    ReportColumn(key="findings", title="Findings", width=22),
     ReportColumn(key="limit", title="Limit as written", width=30),
     ReportColumn(key="limit_words", title="Limit in words", width=56, detail=True),
     ReportColumn(
@@ -185,5 +185,10 @@ def _findings_cell(findings: Sequence[Finding]) -> ReportCell:
         return text("")
     counts = Counter(finding.severity for finding in findings)
     order = (Severity.ERROR, Severity.WARNING, Severity.INFO)
-    words = ", ".join(f"{counts[severity]} {severity.value}" for severity in order if counts[severity])
+    words = ", ".join(_counted(counts[severity], severity) for severity in order if counts[severity])
     return ReportCell(text=words, link=f"findings/{findings[0].subject}")
+
+
+def _counted(count: int, severity: Severity) -> str:
+    several = count > 1 and severity is not Severity.INFO
+    return f"{count} {severity.value}{'s' * several}"

@@ -78,6 +78,11 @@ def test_another_reader_sees_the_same_values() -> None:
                 assert value == (pytest.approx(cell.number, rel=1e-14) if is_number else cell.text)
 
 
+def test_figures_keep_a_distance_from_the_words_of_the_next_column() -> None:
+    right = [cell for _, _, cell in pairs() if cell.alignment.horizontal == "right"]
+    assert right and all(cell.alignment.indent == 1 for cell in right)
+
+
 def test_text_that_looks_like_a_formula_stays_text() -> None:
     cells = [theirs for _, ours, theirs in pairs() if ours.text in (HOSTILE, "=lna.csv", "+49 is no number")]
     assert len(cells) >= 4 and {cell.data_type for cell in cells} == {"s"}

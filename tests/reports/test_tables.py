@@ -97,6 +97,14 @@ def test_the_same_figures_stand_in_status_and_matrix(matrix: ReportTable) -> Non
         assert texts(status, ours) == texts(matrix, theirs)
 
 
+def test_the_findings_of_a_requirement_are_counted_in_words_that_fit() -> None:
+    several = [FINDING, *[FINDING.model_copy(update={"severity": Severity.WARNING})] * 12]
+    found = compliance_matrix(SNAPSHOT, RESULTS, several, harbour.DICTIONARY, ORDERED, DEPTHS)
+    told = cells(found, "PA-1")["findings"].text
+    assert told == "1 error, 12 warnings"
+    assert len(told) < next(column.width for column in found.columns if column.key == "findings")
+
+
 def test_points_of_every_item_with_evidence_are_listed(points: ReportTable) -> None:
     rows = [
         dict(zip((column.key for column in points.columns), row.cells, strict=True))
