@@ -10,7 +10,9 @@ column ``unit``; where they differ in several, each cell keeps its own: ``1.2 dB
 from __future__ import annotations
 
 import json
+import sys
 from collections import Counter
+from collections.abc import Iterator
 from dataclasses import dataclass, field
 from typing import Any
 
@@ -23,7 +25,7 @@ from specflow.importers.readers.source import Source
 from specflow.importers.readers.stores import Value
 
 MAX_CELLS = 4_000_000
-"""About a gigabyte while they are read: every line is a dictionary until all keys are known."""
+"""About half a gigabyte while they are read: every line is a dictionary until all keys are known."""
 
 MAX_KEYS = 2_000
 
@@ -49,33 +51,46 @@ class _Pairs(list[tuple[str, Any]]):
 
 def read_json_lines(source: Source) -> list[Grid]:
     """The objects of a file. Raises FileError for content that is no text or holds no object a line."""
-    text, notes = decode(source)
-    lines = [_read_line(line) if line.strip() else None for line in text.rstrip("\n").split("\n")]
-    read = [line for line in lines if line is not None]
-    sound = [line for line in read if not line.broken]
-    if 2 * len(sound) <= len(read):
-        first = next((line.broken for line in read), "it is empty")
-        raise FileError(
-            f"{len(read) - len(sound)} of {len(read)} lines are no JSON object ({first})",
-            where=source.name,
-            hint="write one object a line, not a list or an object over several lines",
-        )
+    lines, notes = _read_lines(source)
+    sound = [line for line in lines if line is not None and not line.broken]
     keys = list(dict.fromkeys(key for line in sound for key in (*line.cells, *line.twice)))
     _check_size(source, keys, len(lines))
     doubts = _notes(lines, keys)
     headers = _headers(keys, sound)
-    grid_rows: list[list[Value]] = [list(headers.values())]
-    grid_rows += [[] if line is None else [line.cells.get(key, "") for key in headers] for line in lines]
+    del sound
+    odd = _marks(lines, list(headers)).cells()
     return [
         Grid(
             name=source.name,
-            rows=grid_rows,
+            rows=[list(headers.values()), *_rows(lines, list(headers))],
             file=source.name,
             first_row=0,
-            odd=_marks(lines, list(headers)).cells(),
+            odd=odd,
             notes=(*notes, *doubts),
         )
     ]
+
+
+def _read_lines(source: Source) -> tuple[list[_Line | None], list[str]]:
+    """The lines, None where one is blank, and notes. FileError where most of them are no objects."""
+    text, notes = decode(source)
+    lines = [_read_line(line) if line.strip() else None for line in text.rstrip("\n").split("\n")]
+    read = [line for line in lines if line is not None]
+    broken = [line.broken for line in read if line.broken]
+    if 2 * len(broken) >= len(read):
+        raise FileError(
+            f"{len(broken)} of {len(read)} lines are no JSON object ({broken[0] if broken else 'it is empty'})",
+            where=source.name,
+            hint="write one object a line, not a list or an object over several lines",
+        )
+    return lines, notes
+
+
+def _rows(lines: list[_Line | None], keys: list[str]) -> Iterator[list[Value]]:
+    """The cells of each line; a line is forgotten as its row is made, for both together take twice the memory."""
+    for place, line in enumerate(lines):
+        lines[place] = None
+        yield [] if line is None else [line.cells.get(key, "") for key in keys]
 
 
 def _read_line(text: str) -> _Line:
@@ -100,7 +115,7 @@ def _whole(text: str) -> Value:
 
 def _flatten(pairs: _Pairs, prefix: str, line: _Line) -> None:
     for name, value in pairs:
-        key = f"{prefix}{name}"
+        key = sys.intern(f"{prefix}{name}")  # every line has the same keys, and mostly the same words
         if isinstance(value, _Pairs):
             _flatten(value, f"{key}.", line)
             continue
@@ -111,7 +126,7 @@ def _flatten(pairs: _Pairs, prefix: str, line: _Line) -> None:
         if isinstance(value, list):
             line.lists += 1
             value = json.dumps(_plain(value), ensure_ascii=False)
-        line.cells[key] = "" if value is None else value
+        line.cells[key] = "" if value is None else sys.intern(value) if isinstance(value, str) else value
     if len({name for name, _ in pairs}) < len(pairs):
         for name, times in Counter(name for name, _ in pairs).items():
             if times > 1:
