@@ -29,7 +29,7 @@ if TYPE_CHECKING:
     from xlsxwriter.worksheet import Worksheet
 
 _CREATED = datetime(2026, 1, 1)  # a fixed date: the same points give the same bytes
-_TEXT_WIDTH = 110
+_TEXT_WIDTH = 88  # signs a line: as wide as a page with its margins
 _DATE = "yyyy-mm-dd"
 _ALLOWED = {
     "select_locked_cells": True,
@@ -71,6 +71,7 @@ def _formats(book: Workbook) -> dict[str, Any]:
         "header": book.add_format({**edge, "bold": True, "bg_color": "#E8EDF2"}),
         "heading": book.add_format({"bold": True, "top": 2, "bg_color": "#F3F3F3"}),
         "cell": book.add_format(edge),
+        "number": book.add_format({**edge, "align": "right", "indent": 1}),
         "fixed": book.add_format({**edge, "bold": True}),
         "entry": book.add_format(filled),
         "date": book.add_format({**filled, "num_format": _DATE}),
@@ -82,7 +83,8 @@ def _write_guide(sheet: Worksheet, workbook: BenchWorkbook, formats: Mapping[str
     sheet.set_column(0, 0, _TEXT_WIDTH)
     sheet.write_string(0, 0, f"Test sheet of {workbook.project}", formats["title"])
     made = f"Written at project revision {workbook.revision}, judged as of {workbook.as_of}."
-    counted = f"{workbook.points} values on {len(workbook.sheets)} sheets."
+    count = len(workbook.sheets)
+    counted = f"{workbook.points} values on {count} {'sheet' if count == 1 else 'sheets'}."
     texts = [made, counted, *workbook.guide]
     texts += ["Not on this test sheet:", *workbook.notes] if workbook.notes else []
     for row, text in enumerate(texts, 2):
@@ -141,7 +143,7 @@ def _write_cell(worksheet: Worksheet, cell: BenchCell, formats: Mapping[str, Any
     elif isinstance(cell.value, str):
         worksheet.write_string(*place, cell.value, style)
     else:
-        worksheet.write_number(*place, cell.value, style)
+        worksheet.write_number(*place, cell.value, formats["number"] if cell.kind == "cell" else style)
 
 
 def _validate(worksheet: Worksheet, cell: BenchCell, lists: Mapping[str, str], items: str) -> None:
