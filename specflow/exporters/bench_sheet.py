@@ -29,7 +29,7 @@ if TYPE_CHECKING:
     from xlsxwriter.worksheet import Worksheet
 
 _CREATED = datetime(2026, 1, 1)  # a fixed date: the same points give the same bytes
-_TEXT_WIDTH = 88  # signs a line: as wide as a page with its margins
+_TEXT_WIDTH = 74  # signs a line: a single column wider than the page is cut by some programs, not scaled
 _DATE = "yyyy-mm-dd"
 _ALLOWED = {
     "select_locked_cells": True,
