@@ -22,8 +22,8 @@ class ColumnMeaning:
 
     ``of`` is the cell of the value header that an uncertainty belongs to; ``k`` its coverage factor. ``scale`` is what
     its readings are multiplied by; ``by_row`` and ``by_cell`` say where units stand beside them (see ``Spelled``).
-    ``of_file``: what the column is was
-    read from this one file; a mapping of the layout must not hold it fast.
+    ``of_file``: what the column is was read from this one file, and so was what ``said_above`` names of the quantity; a
+    mapping of the layout must not hold it fast.
     """
 
     header: HeaderCell
@@ -45,6 +45,7 @@ class ColumnMeaning:
     by_row: int = 0
     by_cell: bool = False
     of_file: bool = False
+    said_above: tuple[str, ...] = ()
 
     @property
     def spelled(self) -> Spelled:

@@ -143,7 +143,9 @@ def _entry(meaning: ColumnMeaning, mapping: LayoutMapping) -> ColumnMapping:
     letter = meaning.letter
     beside = meaning.by_row or meaning.by_cell or meaning.header.unit_from
     beside = beside or meaning.unit_from.startswith(_OF_THIS_FILE)
-    unit = "" if beside else meaning.unit  # one unit for all would override those beside, or those of the next file
+    unit = (
+        "" if beside else meaning.unit
+    )  # one unit for all would override those beside, or those of the next file
     used = mapping.column(meaning.header.text, letter)
     if used is not None:
         return used
@@ -153,11 +155,12 @@ def _entry(meaning: ColumnMeaning, mapping: LayoutMapping) -> ColumnMapping:
     if meaning.of_file:
         return entry
     if meaning.role is Role.VALUE and meaning.quantity is not None:
-        quantity = meaning.quantity
+        quantity, is_unknown = meaning.quantity, meaning.spectrum is SpectrumKind.UNKNOWN
         return replace(
-            entry, role="value", parameter=quantity.parameter, unit=unit, plane=quantity.plane,
-            statistic=quantity.statistic, polarisation=quantity.polarisation,
-            spectrum="" if meaning.spectrum is SpectrumKind.UNKNOWN else meaning.spectrum.value,
+            entry, role="value", parameter=quantity.parameter, unit=unit, polarisation=quantity.polarisation,
+            plane="" if "plane" in meaning.said_above else quantity.plane,
+            statistic="" if "statistic" in meaning.said_above else quantity.statistic,
+            spectrum="" if is_unknown or "spectrum" in meaning.said_above else meaning.spectrum.value,
         )  # fmt: skip
     if meaning.role is Role.CONDITION:
         return replace(entry, role="condition", dimension=meaning.dimension, unit=unit)

@@ -86,6 +86,12 @@ def value_of(
         unread = f'--state "column {heading.letter}=not read"'
         remedy = f"correct the header, settle parameter and unit in a mapping, or {unread}"
         return heading.ask(what, remedy)
+    other = _other_quantity(heading, parameter, stated)
+    if other:
+        remedy = (
+            "correct the mapping, or say which holds for this file: --state plane=..., --state statistic=..."
+        )
+        return heading.ask(other, remedy)
     try:
         bandwidth = _bandwidth(heading, parameter, unit.unit, stated)
     except UnitError as error:
@@ -109,7 +115,34 @@ def value_of(
         by_row=unit.by_row,
         by_cell=unit.by_cell,
         spectrum=_spectrum(heading.hints.spectrum or stated.text("spectrum")),
+        said_above=_said_above(heading, named, stated),
     )
+
+
+def _said_above(heading: Heading, named: NamedQuantity, stated: Stated) -> tuple[str, ...]:
+    """What of the quantity the file states for the table alone: it is no part of the layout."""
+    own = {
+        "plane": heading.hints.plane or named.plane,
+        "statistic": heading.hints.statistic or named.statistic,
+        "spectrum": heading.hints.spectrum,
+    }
+    return tuple(name for name, value in own.items() if not value and _is_of_file(stated, name))
+
+
+def _is_of_file(stated: Stated, name: str) -> bool:
+    return bool(stated.text(name)) and stated.by(name) not in (PERSON, MAPPING)
+
+
+def _other_quantity(heading: Heading, parameter: Parameter, stated: Stated) -> str:
+    """Say that the file states another plane or statistic than the mapping of the column does."""
+    for name, mapped, said in (
+        ("plane", heading.hints.plane, stated.text("plane")),
+        ("statistic", heading.hints.statistic, _stated_statistic(parameter, stated)),
+    ):
+        if mapped and said and _is_of_file(stated, name) and mapped.casefold() != said.casefold():
+            where = stated.by(name).removeprefix("stated in ")
+            return f"{heading.said_by} says the {name} {mapped!r}, {where} says {said!r}"
+    return ""
 
 
 def _other_ratio(heading: Heading, parameter: Parameter) -> str:

@@ -1,4 +1,4 @@
-"""A kept mapping takes the unit of each file from where it stands there, and never that of the file it was made for."""
+"""A kept mapping takes unit and plane of each file from where they stand there, never from the file it was made for."""
 
 from __future__ import annotations
 
@@ -67,3 +67,24 @@ def test_a_unit_in_the_cells(tmp_path: Path) -> None:
     mapping = kept(tmp_path, [HEAD, [28, "30 dBm"], [29, "31 dBm"]])
     rows = [HEAD, [28, "1.5 W"], [29, "1.6 W"]]
     assert unit_of(taken(one_table(book(tmp_path / "b.xlsx", rows), mapping=mapping))) == "W"
+
+
+def at(plane: str) -> list[list[Any]]:
+    return [["Plane", plane], [], ["f (GHz)", "Output power (dBm)"], [28, 30], [29, 31]]
+
+
+def test_a_plane_above_the_table(tmp_path: Path) -> None:
+    mapping = kept(tmp_path, at("antenna port"))
+    table = taken(one_table(book(tmp_path / "b.xlsx", at("amplifier output")), mapping=mapping))
+    assert table.document is not None and table.document.values[0].quantity.plane == "amplifier output"
+
+
+def test_a_plane_by_hand_against_the_one_above_the_table_is_asked_about(tmp_path: Path) -> None:
+    path = book(tmp_path / "b.xlsx", at("amplifier output"))
+    mapping = kept(tmp_path, at("antenna port")).replace(
+        'unit = "dBm"', 'unit = "dBm"\nplane = "antenna port"'
+    )
+    assert "the mapping says the plane 'antenna port', B1 says 'amplifier output'" in questions(
+        one_table(path, mapping=mapping)
+    )
+    taken(one_table(path, mapping=mapping, stated={**SAID, "plane": "antenna port"}))
