@@ -20,6 +20,7 @@ from specflow.importers.measured.roles import role_of_words
 from specflow.importers.measured.tables import FoundTable, find_header, find_tables
 from specflow.importers.readers import CellRange, Grid, is_blank
 
+_LOOK_AT = 20  # rows at which nearly every column has begun
 _MOST_COLUMNS = 2000
 _WIDEST_FACTS = 3
 _MOST_FACTS = 60
@@ -95,9 +96,10 @@ def _written_runs(grid: Grid) -> list[tuple[int, int]]:
     last = grid.last_row + 1
     runs: list[tuple[int, int]] = []
     for column in range(grid.first_column, grid.last_column + 1):
-        if all(
-            is_blank(value) for value in grid.column(column, grid.first_row, min(last, grid.first_row + 200))
-        ) and all(is_blank(value) for value in grid.column(column, grid.first_row, last)):
+        begins = range(grid.first_row, min(last, grid.first_row + _LOOK_AT))
+        if all(is_blank(grid.value(row, column)) for row in begins) and all(
+            map(is_blank, grid.column(column, grid.first_row, last))
+        ):
             continue
         if runs and runs[-1][1] == column - 1:
             runs[-1] = (runs[-1][0], column)

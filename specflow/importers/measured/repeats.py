@@ -5,6 +5,7 @@ from __future__ import annotations
 import hashlib
 from collections.abc import Sequence
 from dataclasses import replace
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -86,6 +87,7 @@ def _mixed(bits: Marks, name: str) -> Marks:
     return np.asarray(mixed * np.uint64(0xBF58476D1CE4E5B9))
 
 
+@lru_cache(maxsize=4096)
 def _of_text(text: str) -> np.uint64:
     return np.uint64(int(hashlib.sha256(text.encode()).hexdigest()[:16], 16))
 
