@@ -77,5 +77,5 @@ def refuse_rejected(preview: LoadPreview, *, take_rest: bool) -> None:
             f"{'were' if rejected != 1 else 'was'} rejected; nothing was stored. "
             f"{'It' if rejected == 1 else 'The first'}: {first.message}",
             where=str(first.origin or preview.path),
-            hint="mend them in the workbook, or say --take-rest to store what could be read",
+            hint=f"{first.remedy or 'mend it in the workbook'}; --take-rest stores what could be read",
         )
