@@ -7,8 +7,9 @@ from dataclasses import dataclass, field
 from pathlib import Path
 
 from specflow.importers.measurements import MeasuredTable, Measurements, read_measurements
-from specflow.model.evidence import TableMapping
+from specflow.model.evidence import EvidenceFile, TableMapping
 from specflow.model.snapshot import Snapshot
+from specflow.parameters import Dictionary
 from specflow.store import ProjectStore
 from specflow.workflows.attach_derived import Planned, planned_tables
 from specflow.workflows.earlier_tables import Replacement, replaced_rows
@@ -125,6 +126,8 @@ def preview_attach(
         sheets=options.sheets,
         include_hidden_rows=options.include_hidden_rows,
     )
+    if not options.stated and any(table.questions for table in measurements.tables):
+        measurements = _as_answered_before(path, snapshot, dictionary, options, measurements)
     known = _known_tables(snapshot, measurements)
     replacements = {
         place: found
@@ -145,6 +148,28 @@ def preview_attach(
         _mapping_documents(snapshot, measurements, path),
         planned_tables(snapshot, dictionary, measurements, known),
     )
+
+
+def _as_answered_before(
+    path: Path, snapshot: Snapshot, dictionary: Dictionary, options: AttachOptions, measurements: Measurements
+) -> Measurements:
+    """Return the file as it was read when it was stored, where that leaves nothing to ask and nothing new.
+
+    What a person answered for the file with --state holds for the same bytes: they are not asked again.
+    """
+    files = {one.id for one in snapshot.all(EvidenceFile) if one.sha256 == measurements.file.sha256}
+    answers = {one.how_read.stated for one in snapshot.tables if one.file in files and one.how_read.stated}
+    if options.mapping or options.mapping_text or len(answers) != 1:
+        return measurements
+    again = read_measurements(
+        path,
+        snapshot,
+        dictionary,
+        stated=dict(next(iter(answers))),
+        sheets=options.sheets,
+        include_hidden_rows=options.include_hidden_rows,
+    )
+    return again if len(_known_tables(snapshot, again)) == len(again.tables) else measurements
 
 
 def _known_tables(snapshot: Snapshot, measurements: Measurements) -> dict[int, str]:

@@ -79,6 +79,18 @@ def test_the_same_file_again_adds_nothing(store: ProjectStore, tmp_path: Path) -
     assert preview_attach(store, renamed).is_unchanged
 
 
+def test_what_was_answered_for_a_file_is_not_asked_again_of_the_same_file(
+    store: ProjectStore, tmp_path: Path
+) -> None:
+    rows = [["Item", "f (GHz)", "Result (dB)"], ["LNA-1", 27.5, 20.0]]
+    path = book(tmp_path / "gain.xlsx", rows)
+    assert preview_attach(store, path).unresolved
+    attached(store, path, stated={"column C": "gain", "block": "LNA"})
+    assert preview_attach(store, path).is_unchanged
+    other = book(tmp_path / "other.xlsx", [*rows, ["LNA-1", 28.5, 20.0]])
+    assert preview_attach(store, other).unresolved, "another file is asked about"
+
+
 def test_with_rejected_cells_nothing_is_stored_unless_the_rest_is_taken(
     store: ProjectStore, tmp_path: Path
 ) -> None:
