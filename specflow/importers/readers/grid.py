@@ -11,6 +11,7 @@ import re
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from datetime import date, datetime, time, timedelta
+from itertools import islice
 from typing import TypeVar
 
 import numpy as np
@@ -102,7 +103,9 @@ class Grid:
         place = column - self.first_column
         if isinstance(self.rows, CellStore):
             return place >= 0 and self.rows.has_numbers(place, first, last)
-        return not set(map(type, _column_of(self.rows, place, first, last))) <= {str}
+        return place >= 0 and any(
+            place < len(cells) and type(cells[place]) is not str for cells in islice(self.rows, first, last)
+        )
 
     def coded(self, column: int, start: int, stop: int) -> Coded | None:
         """The words of one column in rows ``start`` up to ``stop``, coded; None where they are kept cell by cell."""
