@@ -1,4 +1,4 @@
-"""The header cells of a table: of one row or of two, with merged cells spread, and with the units row below."""
+"""The header cells of a table: of one row or several, with merged cells spread, and with the units row below."""
 
 from __future__ import annotations
 
@@ -6,9 +6,11 @@ import re
 from dataclasses import dataclass, replace
 
 from specflow.importers.measured.header_text import known_unit, read_header, without_coverage
-from specflow.importers.readers import Grid, Value, address, column_letter, is_blank, looks_numeric
+from specflow.importers.readers import CellRange, Grid, Value, address, column_letter, is_blank, looks_numeric
 
 _NO_UNIT = ("", "-", "—", "–", "n/a")
+
+_MOST_ROWS = 4
 
 #: What stands before a row of units, and is none itself.
 UNIT_WORDS = frozenset(("unit", "units", "uom", "einheit"))
@@ -47,23 +49,37 @@ class HeaderCell:
         return f"{'row' if self.turned else 'column'} {self.letter}"
 
 
-def has_second_row(grid: Grid, row: int) -> bool:
-    """Whether the row below tells apart the columns over which a header is merged: Gain over Min, Typ, Max."""
+def count_header_rows(grid: Grid, row: int) -> int:
+    """How many rows the headers have that begin in ``row``: those below tell apart what a cell above is merged over."""
+    count = 1
+    while count < _MOST_ROWS and _tells_apart(grid, row + count - 1):
+        count += 1
+    return count
+
+
+def _tells_apart(grid: Grid, row: int) -> bool:
+    """Whether the row below tells apart the columns over which a header is merged: Gain over Min, Typ, Max.
+
+    It may be merged over some of them, too: supplies below a power, over Typ and Max of each.
+    """
     below = [grid.value(row + 1, column) for column in range(grid.first_column, grid.last_column + 1)]
     if row >= grid.last_row or any(not isinstance(value, str) or looks_numeric(value) for value in below):
         return False
-    spans = [
-        area
-        for area in grid.merged
-        if area.first_row == area.last_row == row and area.first_column < area.last_column
-    ]
-    return any(
-        all(
-            not is_blank(grid.value(row + 1, column))
-            for column in range(area.first_column, area.last_column + 1)
-        )
-        for area in spans
-    )
+    return any(_is_told_apart(grid, row + 1, area) for area in grid.merged if _is_over_columns(area, row))
+
+
+def _is_over_columns(area: CellRange, row: int) -> bool:
+    return area.first_row == area.last_row == row and area.first_column < area.last_column
+
+
+def _is_told_apart(grid: Grid, row: int, area: CellRange) -> bool:
+    filled = 0
+    for column in range(area.first_column, area.last_column + 1):
+        value = grid.value(row, column)
+        filled += not is_blank(value)
+        if is_blank(value) and is_blank(_spread(grid, row, column)):
+            return False
+    return filled > 1
 
 
 def read_headers(grid: Grid, row: int, count: int) -> tuple[HeaderCell, ...]:

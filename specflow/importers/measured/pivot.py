@@ -9,6 +9,7 @@ import numpy as np
 
 from specflow.conditions import Comparison, find_dimension, known_dimension, unlocated_temperature_hint
 from specflow.errors import UnitError
+from specflow.importers.measured.cell_units import to_unit
 from specflow.importers.measured.column import ColumnMeaning, Heading
 from specflow.importers.measured.mapping_parts import UNLOCATED, ColumnMapping, LayoutMapping, PivotMapping
 from specflow.importers.measured.result import Question, Role
@@ -21,7 +22,7 @@ from specflow.importers.measured.work import TableWork
 from specflow.importers.readers import column_letter
 from specflow.model.columns import Columns, TextColumn
 from specflow.model.evidence import SOURCE_COLUMN, ConditionColumn, EvidenceColumns, ValueArrays, ValueColumn
-from specflow.units import parse_number, parse_unit
+from specflow.units import parse_number, parse_unit, split_quantity
 
 
 @dataclass(frozen=True, slots=True)
@@ -119,7 +120,7 @@ def read_pivot_headers(pivot: PivotMapping, columns: Sequence[ColumnMeaning]) ->
         for name, words in match.groupdict().items() if match else ():
             problem = _take(read, pivot, name, " ".join(words.split()))
             if problem:
-                return column.asks(problem, 'mend the pattern, or its units = { frequency = "MHz" }')
+                return column.asks(problem, f'mend the pattern, or its units = {{ {name} = "UNIT" }}')
     return read
 
 
@@ -135,10 +136,18 @@ def _take(read: PivotConditions, pivot: PivotMapping, name: str, words: str) -> 
         if name in pivot.units:
             parse_unit(pivot.units[name])
             read.units[name] = pivot.units[name]
-        read.numeric.setdefault(name, []).append(parse_number(words))
+        read.numeric.setdefault(name, []).append(_number(words, read.units.get(name, "")))
     except UnitError as error:
         return error.message
     return ""
+
+
+def _number(words: str, unit: str) -> float:
+    """A number of a header; one that carries a unit of its own ("28 V", "90°") is brought to that of the pivot."""
+    number, own = split_quantity(words)
+    if not own or not unit:
+        return parse_number(words)
+    return to_unit(parse_number(number), parse_unit(own), parse_unit(unit))
 
 
 def _value(work: TableWork, pivot: PivotMapping, first: ColumnMeaning) -> ValueColumn | None:

@@ -14,8 +14,8 @@ from collections.abc import Iterator
 from specflow.importers.measured.found_table import Axis, FoundTable, Remark
 from specflow.importers.measured.header_cells import (
     HeaderCell,
+    count_header_rows,
     find_units_row,
-    has_second_row,
     read_headers,
     with_nameless_axis,
     with_unit,
@@ -53,7 +53,7 @@ def find_tables(grid: Grid, recognises: Recognises) -> tuple[FoundTable, ...]:
 
 def cut_table(grid: Grid, top: int, row: int, header_rows: int, recognises: Recognises) -> FoundTable:
     """Return the table whose header begins in ``row`` and has ``header_rows`` rows."""
-    header_rows = max(header_rows, 2 if has_second_row(grid, row) else 1)
+    header_rows = max(header_rows, count_header_rows(grid, row))
     headers = read_headers(grid, row, header_rows)
     below = row + header_rows
     if below < grid.last_row and all(map(is_blank, grid.row(below))):
