@@ -62,6 +62,7 @@ class Candidate:
 _MOST_KEPT = 4096
 #: How a mixer's noise figure counts its image. Conventions are planes: only like is compared with like.
 SIDEBAND_PLANES = ("SSB", "DSB")
+_PORT_WORDS = {"INPUT": "input", "IRL": "input", "OUTPUT": "output", "ORL": "output", "S22": "port 2"}
 
 
 @dataclass(frozen=True)
@@ -159,7 +160,7 @@ class Dictionary:
         for words in (header.every, (*header.words, *header.bracketed)):
             for kept, left_out in qualifier_choices(words):
                 yield [
-                    replace(_candidate(*named, header.unit, left_out), plane=_sideband(named[0], kept))
+                    replace(_candidate(*named, header.unit, left_out), plane=_plane_said(named[0], kept))
                     for named in self._named(kept)
                 ]
         plane = spelling_key(header.bracketed)
@@ -220,10 +221,16 @@ def _candidate(parameter: Parameter, reason: str, unit: str, left_out: tuple[str
     return Candidate(parameter, reason, unit, statistic, leftover=left_out)
 
 
-def _sideband(parameter: Parameter, words: Sequence[str]) -> str:
-    """Return the sideband convention that a name says ("NF DSB"), a plane of its parameter: 3 dB hang on it."""
+def _plane_said(parameter: Parameter, words: Sequence[str]) -> str:
+    """Return the plane that a name says within an alias: a sideband convention ("NF DSB", 3 dB hang on it), or the
+    port of a match ("Output return loss" and "S22" say nothing of the input).
+    """
     said = {word.upper() for word in words}
-    return next((one for one in SIDEBAND_PLANES if one in said and one in parameter.planes), "")
+    sideband = next((one for one in SIDEBAND_PLANES if one in said and one in parameter.planes), "")
+    ports = (
+        {_PORT_WORDS[word] for word in said if word in _PORT_WORDS} if "port" in parameter.planes else set()
+    )
+    return sideband or (ports.pop() if len(ports) == 1 else "")
 
 
 def _stands_in(key: str, header: Header) -> bool:
