@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from dataclasses import replace
 
 import numpy as np
@@ -26,6 +27,7 @@ from specflow.importers.measured.tables import FoundTable
 from specflow.importers.measured.unit_source import FoundUnit
 from specflow.units import compatible, format_unit, parse_unit
 
+_IN_CELSIUS = re.compile(r"temp(?:erature)?[_ ](?:deg[_ ]?)?c(?:elsius)?", re.IGNORECASE)
 _LEVELS = ("power_level", "input_level")
 
 
@@ -108,6 +110,8 @@ def is_temperature(parts: HeaderText, unit: FoundUnit) -> bool:
 
 def temperature(heading: Heading, unit: FoundUnit, stated: Stated) -> ColumnMeaning:
     """Read such a column, where somebody stated the location; else it is a question."""
+    if not unit.unit and not unit.problem and _IN_CELSIUS.fullmatch(heading.parts.text):
+        unit = FoundUnit("°C", f"the header {heading.header.cell}")
     location = stated.text("temperature")
     dimension = find_dimension(f"{location} temperature") if location else None
     if dimension is None:

@@ -9,10 +9,11 @@ from specflow.importers.measured.beside import strips_of
 from specflow.importers.measured.blocks import block_table, end_before_more, find_block, is_far_from
 from specflow.importers.measured.context import Context
 from specflow.importers.measured.corner import find_number_row, next_number_row, table_under
+from specflow.importers.measured.header_rows import words_of
 from specflow.importers.measured.long_form import is_long_header
 from specflow.importers.measured.sideways import find_sideways
-from specflow.importers.measured.tables import FoundTable, cut_table, find_header
-from specflow.importers.readers import CellRange, Grid
+from specflow.importers.measured.tables import FoundTable, cut_table, find_header, rows_of_numbers
+from specflow.importers.readers import CellRange, Grid, is_blank
 
 _ROWS_BELOW = 2
 
@@ -54,14 +55,8 @@ def _next(grid: Grid, top: int, context: Context) -> tuple[FoundTable, int] | No
     numbers = find_number_row(grid, top, reach, context)
     if numbers is not None and not (certain and row is not None and row < numbers.row == numbers.label_row):
         return _ended(lambda cells: table_under(cells, top, numbers, context), grid, context)
-    if (
-        block is not None
-        and (row is None or grid.is_text)
-        and (
-            row is None
-            or block < row
-            or (is_far_from(grid, row, block) and not _has_header(grid, block, context))
-        )
+    if block is not None and (
+        row is None or (grid.is_text and _has_no_header(grid, row, block, certain, context))
     ):
         table = block_table(grid, top, block, context)
         return table, table.stop_row
@@ -81,6 +76,24 @@ def _ended(make: Callable[[Grid], FoundTable], grid: Grid, context: Context) -> 
         return table, table.stop_row
     table = make(grid.cut(CellRange(grid.first_row, grid.first_column, row - 1, grid.last_column)))
     return table, int(table.rows[-1]) + 1 if len(table.rows) else row
+
+
+def _has_no_header(grid: Grid, row: int, block: int, certain: bool, context: Context) -> bool:
+    """Whether a row of words is not the header of a block of numbers: it stands below, or too far above, or it is prose
+    with rows of other numbers under it.
+    """
+    if block < row:
+        return True
+    named = words_of(grid, row)
+    if not certain and any(
+        not named.keys() >= _filled(grid, one) for one in rows_of_numbers(grid, row + 1, block)
+    ):
+        return True
+    return is_far_from(grid, row, block) and not _has_header(grid, block, context)
+
+
+def _filled(grid: Grid, row: int) -> set[int]:
+    return {column for column, value in enumerate(grid.row(row), start=1) if not is_blank(value)}
 
 
 def _has_header(grid: Grid, block: int, context: Context) -> bool:

@@ -161,6 +161,12 @@ class _Reader:
 
     def _by_words(self, heading: Heading) -> ColumnMeaning:
         parts = heading.parts
+        texts = self._texts(heading)
+        if texts and all(map(_TWO_NUMBERS.fullmatch, texts)):
+            remedy = 'export the two parts as columns of their own, or role = "not read" in a mapping'
+            return heading.ask(
+                f"each cell holds two numbers ({texts[0][:40]}): no reading is taken of them", remedy
+            )
         field = field_of_detector(parts.name, heading.unit().unit)
         if field is not None:
             return self._field(heading, field)
@@ -329,17 +335,17 @@ class _Reader:
         cells = self._table.cells(heading.header.column)
         return not cells.numeric.any()
 
+    def _texts(self, heading: Heading) -> list[str]:
+        """What stands in the first cells that hold no number."""
+        cells = self._table.cells(heading.header.column)
+        return [str(cells.value(row)) for row in cells.odd[:_MOST_TEXTS]]
+
     def _unknown(self, heading: Heading) -> ColumnMeaning:
         """Numbers that nobody can name are asked about; words are kept as a remark."""
         cells = self._table.cells(heading.header.column)
         places = self._table.rows - self._table.first_row
-        texts = [str(cells.value(row)) for row in cells.odd[:_MOST_TEXTS]]
+        texts = self._texts(heading)
         if not cells.numeric[places].any() and not any(map(_READING_AS_TEXT.match, texts)):
-            if texts and all(map(_TWO_NUMBERS.fullmatch, texts)):
-                remedy = 'export the two parts as columns of their own, or role = "not read" in a mapping'
-                return heading.ask(
-                    f"each cell holds two numbers ({texts[0][:40]}): no reading is taken of them", remedy
-                )
             return heading.means(Role.REMARK, "words that name no condition; kept as a remark")
         item, pattern = self._item_in(heading.header.text)
         if item:

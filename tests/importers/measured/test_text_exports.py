@@ -179,3 +179,41 @@ def test_what_the_person_says_settles_what_the_file_leaves_open(
     path = text(tmp_path / "a.txt", f"{line}\nSupply voltage (V)\tGain (dB)\n3\t20\n4\t21\n5\t22\n")
     assert key in questions(one_table(path)) or "no date" in questions(one_table(path))
     assert low(taken(one_table(path, stated={**SAID, key: said})), "Gain") == [20, 21, 22]
+
+
+def test_the_port_in_the_name_of_a_match_is_its_plane(tmp_path: Path) -> None:
+    header = "Frequency (GHz),Input Return Loss (dB),Output Return Loss (dB),S11 (dB),S22 (dB),Output VSWR"
+    table = taken(
+        one_table(text(tmp_path / "a.csv", f"{header}\n28,18,12,-18,-12,1.7\n29,17,11,-17,-11,1.8\n"))
+    )
+    assert table.document is not None
+    planes = [column.quantity.plane for column in table.document.values]
+    assert planes == ["input", "output", "", "port 2", "output"]
+
+
+def test_complex_cells_are_no_gain_whatever_unit_is_stated(tmp_path: Path) -> None:
+    path = text(tmp_path / "a.csv", "freq (GHz),S21\n28,0.9-0.5j\n29,0.8+0.1j\n")
+    assert "two numbers" in questions(one_table(path, stated={**SAID, "unit": "dB"}))
+
+
+def test_a_line_of_prose_with_as_many_words_as_columns_is_no_header(tmp_path: Path) -> None:
+    lines = [
+        "Field data in cuts",
+        " -20.0 10.0 5 0.0 3 1 2",
+        *(f" 0.{step} 0.01 0.002 0.5" for step in range(5)),
+    ]
+    table = one_table(text(tmp_path / "feed.cut", "\n".join(lines)))
+    assert table.rows == 5 and {one.cell for one in table.questions} >= {"A3", "B3", "C3", "D3"}
+
+
+def test_a_row_that_lacks_a_number_leaves_unknown_headers_where_they_are(tmp_path: Path) -> None:
+    path = text(tmp_path / "a.csv", "Foo,Bar,Quux\n1,,3\n4,5,6\n7,8,9\n1,2,3\n")
+    assert {one.header for one in one_table(path).questions} == {"Foo", "Bar", "Quux"}
+
+
+def test_a_temperature_may_say_celsius_in_its_name(tmp_path: Path) -> None:
+    lines = [f'{{"freq_ghz": {f}, "gain_db": 20, "temp_c": 25}}' for f in (28, 29)]
+    table = taken(
+        one_table(text(tmp_path / "a.jsonl", "\n".join(lines)), stated={**SAID, "temperature": "ambient"})
+    )
+    assert table.columns is not None and table.columns.conditions.units["temperature_ambient"] == "°C"
