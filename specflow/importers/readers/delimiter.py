@@ -21,6 +21,8 @@ _MOST_WORDS = 4
 _MOST_TITLES = 3
 
 _NUMBER = re.compile(r"[<>≤≥]?\s*[+\-−]?(?:[0-9]+(?:[.,][0-9]*)?|[.,][0-9]+)(?:[eE][+\-−]?[0-9]+)?\s*%?")
+_BOUNDS = "<>≤≥"
+_FIELD_OR_BOUND = re.compile(r"(?:<=?|>=?|≤|≥)\s+[+\-−]?[.,]?[0-9]\S*|\S+")
 _SETTING = re.compile(r"[^0-9:=,][^:=,]*[:=]\s*[+\-−]?[0-9]+")
 _IN_SQUARE = re.compile(r"[^\[\]]+\[[^\[\]]*\]")
 _IN_ROUND = re.compile(r"[^()]+\([^()]*\)")
@@ -77,10 +79,17 @@ def _parts_every_line(sample: Sequence[str]) -> tuple[str, int] | None:
     return None
 
 
+def split_blanks(line: str) -> list[str]:
+    """The fields of a line that blanks part; a bound stays whole ("17.7  < -60" has two)."""
+    if any(sign in line for sign in _BOUNDS):
+        return _FIELD_OR_BOUND.findall(line)
+    return line.split()
+
+
 def split(line: str, delimiter: str) -> list[str]:
     """The fields of one line, without the blanks around them."""
     if delimiter == BLANKS:
-        return line.split()
+        return split_blanks(line)
     if '"' not in line:
         return [field.strip() for field in line.split(delimiter)]
     try:

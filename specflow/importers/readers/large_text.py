@@ -15,7 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.errors import FileError
-from specflow.importers.readers.delimiter import BLANKS, SAMPLE_LINES, Layout
+from specflow.importers.readers.delimiter import BLANKS, SAMPLE_LINES, Layout, split_blanks
 from specflow.importers.readers.grid import Grid, text_floats
 from specflow.importers.readers.source import Source
 from specflow.importers.readers.stores import CellStore, Flags, Floats, Value, locked
@@ -239,5 +239,5 @@ class TextColumns(CellStore):
         """The fields of lines as they are parted in a plain table."""
         text = self._content[self._starts[start] : self._starts[stop] - 1].decode()
         if self._delimiter is None:
-            return [line.split() for line in text.split("\n")]
+            return [split_blanks(line) for line in text.split("\n")]
         return [[field.strip() for field in line.split(self._delimiter)] for line in text.split("\n")]

@@ -13,6 +13,7 @@ from specflow.importers.readers.delimiter import (
     is_number,
     is_setting,
     split,
+    split_blanks,
     split_preamble,
     split_to_width,
 )
@@ -57,7 +58,7 @@ class TextLines:
 
     def _parted(self, layout: Layout) -> list[list[Value]]:
         if layout.delimiter == BLANKS:
-            return [list(line.split()) for line in self._lines]
+            return [list(split_blanks(line)) for line in self._lines]
         if '"' in self._text:
             try:
                 return _quoted_rows(self._text, layout.delimiter)

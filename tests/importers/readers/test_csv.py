@@ -338,3 +338,17 @@ def test_blanks_within_fields_do_not_part_them(tmp_path: Path) -> None:
     assert grid_of(tmp_path / "a.txt", "Spots\nOffset\tL(f)\n1 kHz\t-85.1 dBc/Hz\n1 MHz\t-125 dBc/Hz\n").rows[1:] == [
         ["Offset", "L(f)"], ["1 kHz", "-85.1 dBc/Hz"], ["1 MHz", "-125 dBc/Hz"],
     ]  # fmt: skip
+
+
+def test_a_bound_among_runs_of_blanks_is_one_field(tmp_path: Path) -> None:
+    body = "17.7  < -60  2.1\n18.7  <= -61  2.2\n19.7  -55  2.5\n"
+    assert grid_of(tmp_path / "a.dat", f"f (GHz)  ACLR (dBc)  EVM (%)\n{body}").rows == [
+        ["f (GHz)", "ACLR (dBc)", "EVM (%)"],
+        ["17.7", "< -60", "2.1"],
+        ["18.7", "<= -61", "2.2"],
+        ["19.7", "-55", "2.5"],
+    ]
+    assert grid_of(tmp_path / "b.csv", "Gain (dB);f (GHz)\n20;27.5\n> 60\n> 61\n").rows[2:] == [
+        ["> 60"],
+        ["> 61"],
+    ]
