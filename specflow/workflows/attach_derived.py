@@ -198,4 +198,5 @@ def planned_result(one: PlannedTable) -> str:
     if one.stored_as:
         return f"stored as {one.stored_as}"
     refused = [f"not for {lost.group or 'some rows'}: {lost.why}" for lost in one.derived.refused]
-    return "; ".join([f"{one.derived.columns.conditions.size} values", *refused, *one.derived.notes])
+    size = one.derived.columns.conditions.size
+    return "; ".join([f"{size} value{'s' * (size != 1)}", *refused, *one.derived.notes])

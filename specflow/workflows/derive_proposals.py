@@ -107,7 +107,9 @@ def _proposal(
             if preview.is_unchanged:
                 return None
             refused = len(preview.derived.refused)
-            why += f"; gives {preview.table.rows} values" + (f", {refused} groups refused" * bool(refused))
+            given = preview.table.rows
+            why += f"; gives {given} value{'s' * (given != 1)}"
+            why += f", {refused} group{'s' * (refused != 1)} refused" if refused else ""
     if guessed:
         why += "; the requirement states no range, that of the data is shown: state the one that is meant"
     words = ["specflow", "derive", law.name, "--from", table.id, "--value", column.name]

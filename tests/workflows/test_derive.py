@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from dataclasses import replace
 from datetime import date
 from pathlib import Path
 from typing import Any
@@ -348,6 +349,16 @@ def test_nothing_is_derived_from_a_table_that_was_replaced(store: ProjectStore) 
     supersede(store, gain_trace("T-2"))
     with pytest.raises(DocumentError, match="T-1 was superseded by T-2"):
         preview_derive(store, DeriveOptions("worst", ("T-1",), over=(OVER,)))
+
+
+def test_what_a_law_would_give_and_refuse_is_counted_in_words(store: ProjectStore) -> None:
+    table, columns = gain_trace("T-2")
+    low = columns.values["Gain"].low.copy()
+    low[0] = np.nan  # the first end at 25 °C was not measured
+    columns = replace(columns, values={"Gain": replace(columns.values["Gain"], low=low, high=low)})
+    supersede(store, (table, columns))
+    [found] = [one for one in proposals(store, DAY) if one.requirement.id == "R-1"]
+    assert found.why.endswith("gives 1 value, 1 group refused")
 
 
 def test_what_requirements_lack_is_proposed_with_the_words_to_say(store: ProjectStore) -> None:

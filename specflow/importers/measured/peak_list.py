@@ -25,7 +25,7 @@ from specflow.model.columns import UNSTATED, Columns, TextColumn
 from specflow.model.correction import AppliedCorrection, Correction
 from specflow.model.evidence import EvidenceColumns, SpectrumKind, ValueArrays, ValueColumn
 from specflow.model.source_statement import LIST_COLUMN, PEAK, PeakList, PeakScan
-from specflow.units import converter, parse_unit
+from specflow.units import bandwidth_words, converter, parse_unit
 
 AXIS = "frequency"
 _LIST = re.compile(
@@ -107,10 +107,10 @@ def _most_added(correction: Correction, scan: PeakScan) -> float | None:
 
 
 def _scan_words(scan: PeakScan) -> str:
-    said = f"scanned from {scan.low / 1e6:g} to {scan.high / 1e6:g} MHz"
+    said = f"scanned from {bandwidth_words(scan.low)} to {bandwidth_words(scan.high)}"
     if scan.floor is not None:
         said += f" down to {scan.floor:g} {scan.floor_unit}"
-    return said + (f" in {scan.bandwidth_hz / 1e3:g} kHz" if scan.bandwidth_hz else "")
+    return said + (f" in {bandwidth_words(scan.bandwidth_hz)}" if scan.bandwidth_hz else "")
 
 
 @dataclass(frozen=True, slots=True)

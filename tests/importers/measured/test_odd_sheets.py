@@ -213,7 +213,11 @@ TAKEN = {
             [2, 100, -90],
         ],
         {"Spurious": [-60, -90, -np.inf]},
-        words=["a peak lies outside what was scanned (row 5)", "a peak lies under the floor (row 6)"],
+        words=[
+            "scanned from 30 MHz to 1 GHz down to -85 dBm",
+            "a peak lies outside what was scanned (row 5)",
+            "a peak lies under the floor (row 6)",
+        ],
     ),
     "the plane of a cut": Taken(
         [["Cut: phi = 90 deg"], ["Angle (deg)", "Gain (dBi)"], [0, 20], [1, 19.9]],
