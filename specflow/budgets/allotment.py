@@ -77,6 +77,14 @@ def _finite_of(side: Floats) -> Floats:
     return np.where(np.isfinite(side), side, np.sign(side) * 1e300)
 
 
+def open_allotment(read: ReadLine, words: str, *, is_shared: bool) -> Allotment:
+    """Return an allotment of a line that bounds nothing yet."""
+    line, least, most = read.line, float(read.values.min()), float(read.values.max())
+    return Allotment(
+        line.block, line.parameter, line.unit, -math.inf, math.inf, is_shared, least, most, words
+    )
+
+
 def key_of(read: ReadLine) -> BlockParameter:
     """Return the block and parameter of a line."""
     return code_key(read.line.block), code_key(read.line.parameter)

@@ -20,6 +20,7 @@ from specflow.budgets.allotment import (
     ends_of,
     joined,
     kept_first,
+    open_allotment,
     rounded_safely,
     rounded_widely,
     taken_first,
@@ -256,18 +257,7 @@ def _allotment(probe: Probe, number: int, value: Floats, at_most: bool, words: s
     read = probe.chain.lines[number]
     is_upper = at_most == (read.role.form.rises > 0)
     value, open_side = np.broadcast_to(value, (probe.size,)), np.full(probe.size, math.inf)
-    now, line = read.values, read.line
-    blank = Allotment(
-        line.block,
-        line.parameter,
-        line.unit,
-        -math.inf,
-        math.inf,
-        True,
-        float(now.min()),
-        float(now.max()),
-        words,
-    )
+    blank = open_allotment(read, words, is_shared=True)
     return blank.by_place(-open_side, value) if is_upper else blank.by_place(value, open_side)
 
 

@@ -2,14 +2,13 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
-from specflow.budgets.allotment import Allotment
+from specflow.budgets.allotment import Allotment, open_allotment
 from specflow.budgets.allowed import Ends, worst_corner
 from specflow.budgets.figures import of_elements
 from specflow.budgets.inverse_figures import line_value
@@ -146,24 +145,13 @@ def _allotment(probe: Probe, number: int, low: Floats, high: Floats, words: str)
     if read.role.form.rises < 0:
         sides = [np.where(np.isfinite(one), one, -one) for one in reversed(sides)]
     bottom, top = sides
-    line, values, tolerance = read.line, read.values, read.line.tolerance
+    values, tolerance = read.values, read.line.tolerance
     if tolerance is not None:
         width = tolerance.minus + tolerance.plus
         upmost = np.maximum(float(np.max(values)) + tolerance.plus, bottom + width)
         lowest = np.minimum(float(np.min(values)) - tolerance.minus, top - width)
         top, bottom = np.where(np.isposinf(top), upmost, top), np.where(np.isneginf(bottom), lowest, bottom)
-    blank = Allotment(
-        line.block,
-        line.parameter,
-        line.unit,
-        -math.inf,
-        math.inf,
-        True,
-        float(values.min()),
-        float(values.max()),
-        words,
-    )
-    return blank.by_place(bottom, top)
+    return open_allotment(read, words, is_shared=True).by_place(bottom, top)
 
 
 def _known(value: Floats) -> Floats:

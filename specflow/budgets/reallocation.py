@@ -9,9 +9,15 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from specflow.budgets.allotment import Allotment, joined, key_of, rounded_safely, rounded_widely
+from specflow.budgets.allotment import (
+    Allotment,
+    joined,
+    key_of,
+    open_allotment,
+    rounded_safely,
+    rounded_widely,
+)
 from specflow.budgets.allowed import Ends, worst_corner
-from specflow.budgets.chain import ReadLine
 from specflow.budgets.children import ends_of_children
 from specflow.budgets.closure import Closure, test_ends, tolerance_ends
 from specflow.budgets.knowledge import KnownLine, Rank
@@ -138,19 +144,12 @@ def _widened(probe: Probe, line: KnownLine, own: Ends) -> Ends:
     else:
         low = np.where(line.is_known, np.minimum(own[0], line.value), own[0])
         high = np.where(line.is_known, np.maximum(own[1], line.value), own[1])
-    return rounded_widely(_allotment(read, low, high, "")).ends(probe.size)
+    return rounded_widely(open_allotment(read, "", is_shared=True).by_place(low, high)).ends(probe.size)
 
 
 def _is_one(own: Ends) -> bool:
     """Whether each side is one number at all places."""
     return all(bool((side == side[0]).all()) for side in own)
-
-
-def _allotment(read: ReadLine, low: Floats, high: Floats, words: str) -> Allotment:
-    line, values = read.line, read.values
-    least, most = float(values.min()), float(values.max())
-    blank = Allotment(line.block, line.parameter, line.unit, -math.inf, math.inf, True, least, most, words)
-    return blank.by_place(low, high)
 
 
 def _miss(
@@ -272,7 +271,7 @@ def _proposal(
         if not wider and not narrower:
             continue
         words = "relaxed to what is known of it" if wider else "tightened into what is known of it"
-        one = _allotment(read, low, high, words)
+        one = open_allotment(read, words, is_shared=True).by_place(low, high)
         found.append(rounded_widely(one) if wider else rounded_safely(one))
     return tuple(joined(found, f"budget {probe.budget.id}"))
 

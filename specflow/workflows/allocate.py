@@ -2,12 +2,11 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from typing import Literal
 
-from specflow.budgets.allotment import Allotment, BlockParameter, key_of
+from specflow.budgets.allotment import Allotment, BlockParameter, key_of, open_allotment
 from specflow.budgets.apportion import apportion
 from specflow.budgets.children import child_ends
 from specflow.budgets.closure import Closure, closure_test
@@ -193,13 +192,12 @@ def _agreed(
     }
     found: dict[BlockParameter, Allotment] = {}
     for read in probe.chain.lines:
-        key, line, values = key_of(read), read.line, read.values
-        least, most = float(values.min()), float(values.max())
-        blank = Allotment(line.block, line.parameter, line.unit, -math.inf, math.inf, False, least, most, "")
+        key = key_of(read)
+        blank = open_allotment(read, "", is_shared=False)
         child = _known_child(probe.snapshot, probe.budget, blank, serves.get(key, ()))
         if child is None or code_key(child.id) in own:
             continue
-        low, high = child_ends(probe, read.row, child, line.unit)
+        low, high = child_ends(probe, read.row, child, read.line.unit)
         if (low <= high).all():
             found[key] = replace(blank, words=f"{child.id} as it stands", is_kept=True).by_place(low, high)
     return found
