@@ -8,6 +8,7 @@ from dataclasses import dataclass, field
 import numpy as np
 from numpy.typing import NDArray
 
+from specflow.importers.measured.carried import rows_of_values
 from specflow.importers.measured.cells import Rows
 from specflow.importers.measured.column import ColumnMeaning
 from specflow.importers.measured.readings import read_numbers
@@ -15,7 +16,7 @@ from specflow.importers.measured.rejects import Rejects
 from specflow.importers.measured.result import Question, Role
 from specflow.importers.measured.stated import Stated
 from specflow.importers.measured.tables import FoundTable
-from specflow.importers.measured.words import fill_down, read_words
+from specflow.importers.measured.words import read_words
 from specflow.model.columns import Columns, TextColumn
 from specflow.model.evidence import ConditionColumn
 from specflow.units import format_unit, parse_unit
@@ -44,9 +45,7 @@ def read_conditions(
             continue
         name = meaning.dimension
         if meaning.is_text:
-            words = read_words(table, meaning.column, rows, rejects)
-            words = _merged_words(table, meaning.column, rows, words, read.notes)
-            text[name] = fill_down(words) if meaning.fill_down else words
+            text[name] = words_of_rows(table, meaning, rows, rejects, read.notes)
             blank = int(np.count_nonzero(text[name].codes < 0))
         else:
             values = _numbers(table, meaning, rows, rejects, read)
@@ -68,6 +67,7 @@ def _numbers(
     table: FoundTable, meaning: ColumnMeaning, rows: Rows, rejects: Rejects, read: ReadConditions
 ) -> NDArray[np.float64]:
     own = rejects.apart()
+    rows, places = rows_of_values(table, meaning.column, rows, meaning.fill_down, read.notes)
     numbers = read_numbers(table, meaning.column, meaning.spelled, rows, own)
     rejects.cells += own.cells
     if numbers.problem:
@@ -85,55 +85,16 @@ def _numbers(
             rejects.add(int(rows[place]), meaning.column, table.cells(meaning.column).value(int(rows[place])),
                         "a condition must be one value, not a bound or a range")  # fmt: skip
             numbers.drop(place)
-    values = _merged_numbers(table, meaning.column, rows, numbers.low, read.notes)
-    if meaning.fill_down:
-        last = np.maximum.accumulate(np.where(np.isnan(values), -1, np.arange(len(values))))
-        values = np.where(last >= 0, values[np.maximum(last, 0)], values)
-    return values
+    return numbers.low if places is None else numbers.low[places]
 
 
-def _merged_spans(table: FoundTable, column: int, rows: Rows) -> list[tuple[int, NDArray[np.bool_], str]]:
-    """Merged cells that lie within one column: (place of the anchor, the other rows, the range)."""
-    spans = []
-    for area in table.grid.merged:
-        if area.first_column == area.last_column == column and area.first_row >= table.first_row:
-            anchor = np.flatnonzero(rows == area.first_row)
-            if len(anchor):
-                others = (rows > area.first_row) & (rows <= area.last_row)
-                spans.append(
-                    (
-                        int(anchor[0]),
-                        others,
-                        f"{table.grid.address(area.first_row, column)}:{table.grid.address(area.last_row, column)}",
-                    )
-                )
-    return spans
-
-
-def _merged_words(
-    table: FoundTable, column: int, rows: Rows, words: TextColumn, notes: list[str]
+def words_of_rows(
+    table: FoundTable, meaning: ColumnMeaning, rows: Rows, rejects: Rejects, notes: list[str]
 ) -> TextColumn:
-    codes = words.codes
-    for anchor, others, where in _merged_spans(table, column, rows):
-        codes = np.where(others, codes[anchor], codes)
-        notes.append(f"merged cells {where}: the value holds for all their rows")
-    return TextColumn(codes, words.labels)
-
-
-def _merged_numbers(
-    table: FoundTable, column: int, rows: Rows, values: NDArray[np.float64], notes: list[str]
-) -> NDArray[np.float64]:
-    for anchor, others, where in _merged_spans(table, column, rows):
-        values = np.where(others, values[anchor], values)
-        notes.append(f"merged cells {where}: the value holds for all their rows")
-    return values
-
-
-def merged_items(
-    table: FoundTable, column: int, rows: Rows, words: TextColumn, notes: list[str]
-) -> TextColumn:
-    """Items written in merged cells hold for all rows of the cell."""
-    return _merged_words(table, column, rows, words, notes)
+    """The words of a column for each row, also where they stand in a merged cell or further above."""
+    own, places = rows_of_values(table, meaning.column, rows, meaning.fill_down, notes)
+    words = read_words(table, meaning.column, own, rejects)
+    return words if places is None else words.take(places)
 
 
 def _document(meaning: ColumnMeaning, unit: str) -> ConditionColumn:

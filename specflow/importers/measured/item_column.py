@@ -4,11 +4,10 @@ from __future__ import annotations
 
 import numpy as np
 
-from specflow.importers.measured.conditions import merged_items
+from specflow.importers.measured.conditions import words_of_rows
 from specflow.importers.measured.result import Role
 from specflow.importers.measured.stated import PERSON
 from specflow.importers.measured.subject import item_name
-from specflow.importers.measured.words import fill_down, read_words
 from specflow.importers.measured.work import TableWork
 from specflow.model.base import code_key
 from specflow.model.columns import TextColumn
@@ -23,9 +22,7 @@ def read_items(work: TableWork) -> TextColumn:
     if columns:
         if any(one.by == PERSON for one in work.stated.items):
             work.notes.append("items are named row by row; the one that was stated was not used")
-        words = read_words(work.table, columns[0].column, work.rows, work.rejects)
-        words = merged_items(work.table, columns[0].column, work.rows, words, work.notes)
-        return fill_down(words) if columns[0].fill_down else words
+        return words_of_rows(work.table, columns[0], work.rows, work.rejects, work.notes)
     item = item_name(work.stated.items, work.context)
     of_sheet = _item_of_sheet(work)
     if item:

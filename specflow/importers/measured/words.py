@@ -73,13 +73,6 @@ def read_dates(table: FoundTable, column: int, rows: Rows, rejects: Rejects) -> 
     return TextColumn.of(texts)
 
 
-def fill_down(words: TextColumn) -> TextColumn:
-    """Give a blank cell the word above it."""
-    codes = words.codes.copy()
-    last = np.maximum.accumulate(np.where(codes >= 0, np.arange(len(codes)), -1))
-    return TextColumn(np.where(last >= 0, codes[np.maximum(last, 0)], codes).astype(np.int32), words.labels)
-
-
 def _word(value: Value) -> str:
     if isinstance(value, str):
         text = (
