@@ -125,7 +125,7 @@ def _attach(store: ProjectStore, folder: Path, result: ResultFile) -> str:
     attached = accept_attach(store, preview, Decision(by=BY, take_rest=result.take_rest))
     said.append(f"{attached.values} values in {', '.join(attached.tables)}")
     if rejected:
-        said.append(f"{rejected} rows or cells rejected and left out, which stays a finding")
+        said.append(f"rejected and left out, which stays a finding: {rejected} of its rows and cells")
     return "; ".join(filter(None, said))
 
 
