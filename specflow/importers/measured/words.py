@@ -15,6 +15,7 @@ from specflow.importers.readers import OddKind, Value
 from specflow.importers.readers.stores import Coded
 from specflow.model.columns import TextColumn
 
+_DAY_NUMBERS = (25_569, 73_050)  # 1970 to 2099, as workbooks count days
 _NOTHING = frozenset(("", "-", "—", "–", "n/a", "N/A", "na", "NA"))
 
 
@@ -68,7 +69,7 @@ def read_dates(table: FoundTable, column: int, rows: Rows, rejects: Rejects) -> 
         if value not in found:
             found[value] = _day(value)
         if not found[value] and str(value).strip() not in _NOTHING:
-            rejects.add(int(rows[place]), column, value, "no date with one meaning: write it as YYYY-MM-DD")
+            rejects.add(int(rows[place]), column, value, f"no date with one meaning: {_remedy(value)}")
         texts.append(found[value])
     return TextColumn.of(texts)
 
@@ -86,6 +87,12 @@ def _word(value: Value) -> str:
     if isinstance(value, datetime | date | time):
         return value.isoformat()
     return str(value)
+
+
+def _remedy(value: Value) -> str:
+    if isinstance(value, float) and _DAY_NUMBERS[0] <= value <= _DAY_NUMBERS[1]:
+        return "a number; where it counts days, give the cells the format of a date"
+    return "write it as YYYY-MM-DD"
 
 
 def _day(value: Value) -> str:

@@ -250,3 +250,9 @@ def test_one_group_behind_the_other_mark_is_asked_about(tmp_path: Path, rows: st
 def test_one_group_is_of_thousands_where_others_are_so_for_certain(tmp_path: Path) -> None:
     table = taken(one_table(text(tmp_path / "a.csv", "f (GHz);Gain (dB)\n27,5;1.020,5\n28;1.234\n")))
     assert low(table, "Gain") == [1020.5, 1234.0]
+
+
+def test_a_day_without_the_format_of_a_date_is_rejected_with_what_to_do(tmp_path: Path) -> None:
+    rows = [["Date", "f (GHz)", "Gain (dB)"], [46000, 28, 20.1], ["02/03/2026", 29, 20.2]]
+    found = rejected(one_table(book(tmp_path / "a.xlsx", rows)))
+    assert "give the cells the format of a date" in found["A2"] and "YYYY-MM-DD" in found["A3"]
