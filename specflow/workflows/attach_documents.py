@@ -41,19 +41,8 @@ def documents_of(
         if (stored := snapshot.find(EvidenceTable, code)) is not None
     }
     for place, table in preview.new_tables:
-        assert table.document is not None and table.columns is not None
-        mapping, revision = _mapping_of(preview, table)
-        document = table.document.model_copy(
-            update={
-                "id": f"EV-{number}",
-                "file": file.id,
-                "mapping": mapping,
-                "mapping_revision": revision,
-                "accepted_by": decision.by,
-                "accepted_at": now,
-                "provisional": snapshot.project.policy.second_review,
-            }
-        )
+        assert table.columns is not None
+        document = _accepted(preview, table, f"EV-{number}", file, decision, now)
         documents.append(document)
         roots[place] = document
         columns[document.id] = table.columns
@@ -75,6 +64,25 @@ def documents_of(
         Acceptance(decision.by, now, decision.reason, decision.resolves),
     )
     return [*documents, *steps, *derived], {**columns, **arrays}
+
+
+def _accepted(
+    preview: AttachPreview, table: MeasuredTable, code: str, file: EvidenceFile, decision: Decision, now: str
+) -> EvidenceTable:
+    """The document of a table that was read, as it is stored."""
+    assert table.document is not None
+    mapping, revision = _mapping_of(preview, table)
+    return table.document.model_copy(
+        update={
+            "id": code,
+            "file": file.id,
+            "mapping": mapping,
+            "mapping_revision": revision,
+            "accepted_by": decision.by,
+            "accepted_at": now,
+            "provisional": preview.snapshot.project.policy.second_review,
+        }
+    )
 
 
 def file_of(preview: AttachPreview, now: str, *, path: str, kept: bool) -> EvidenceFile:
