@@ -96,6 +96,7 @@ RULES: tuple[Rule, ...] = (
     Rule.of(evidence.left_out_cells, "evidence_table", _WARNING),
     Rule.of(evidence.provisional_evidence, "evidence_table", _WARNING),
     Rule.of(evidence.outdated_derivation, "evidence_table", _WARNING),
+    Rule.of(evidence.withdrawn_evidence, "evidence_table", _WARNING),
     Rule.of(evidence.calibration_lapsed, "evidence_table", _ERROR),
     Rule.of(items.unknown_item, "item", _WARNING),
     Rule.of(items.unnamed_item, "requirement", _WARNING),

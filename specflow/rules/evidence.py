@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from specflow.model.base import code_key
-from specflow.model.evidence import EvidenceTable
+from specflow.model.evidence import EvidenceTable, Withdrawal
 from specflow.model.verdict import Mismatch, RecordRef
 from specflow.rules.base import Found
 from specflow.rules.facts import Facts
@@ -211,6 +211,25 @@ def outdated_derivation(facts: Facts) -> Iterator[Found]:
         if reason and code_key(table.id) not in gone:
             related = () if table.derivation is None else (table.derivation,)
             yield Found(table.id, reason, origin=facts.place(table), related=related)
+
+
+def withdrawn_evidence(facts: Facts) -> Iterator[Found]:
+    """Evidence was withdrawn: it counts no more, neither for nor against.
+
+    Why: a withdrawal can take a failing reading away on the word of its reason; a board has to see each.
+    Fails: a run was withdrawn because a cable was loose.
+    Passes: every table stands, or was superseded by a named successor.
+    Do: look whether the reason holds, and record a disposition that says so.
+    """
+    for withdrawal in facts.snapshot.all(Withdrawal):
+        table = facts.snapshot.find(EvidenceTable, withdrawal.table)
+        if table is None or withdrawal.at[:10] > facts.results.as_of:
+            continue
+        whole = withdrawal.rows is None
+        what = "the whole table" if whole else counted(len(withdrawal.rows or ()), "row")
+        by = f" by {withdrawal.by}" if withdrawal.by else ""
+        message = f"{what} withdrawn{by}: {withdrawal.reason}"
+        yield Found(table.id, message, origin=facts.place(table), related=(withdrawal.id, table.file))
 
 
 def calibration_lapsed(facts: Facts) -> Iterator[Found]:
