@@ -6,7 +6,7 @@ import numpy as np
 
 from specflow.importers.measured.conditions import words_of_rows
 from specflow.importers.measured.result import Role
-from specflow.importers.measured.stated import PERSON
+from specflow.importers.measured.stated import MAPPING, PERSON
 from specflow.importers.measured.subject import item_name
 from specflow.importers.measured.work import TableWork
 from specflow.model.base import code_key
@@ -28,10 +28,11 @@ def read_items(work: TableWork) -> TextColumn:
     if item:
         if item != work.stated.text("item"):
             work.notes.append(f"the item is {item}, as the project knows it")
-        if of_sheet and _id(work, of_sheet) != _id(work, item):
-            work.notes.append(
-                f"the sheet has the name of the item {of_sheet}; it was taken for {item}, as stated"
-            )
+        is_mapped = any(one.by == MAPPING for one in work.stated.items)
+        if of_sheet and not is_mapped and _id(work, of_sheet) != _id(work, item):
+            what = f"the sheet has the name of the item {of_sheet}, and {item} is stated"
+            remedy = f'say nothing of the item for this sheet; or [table.stated] item = "{item}" in a mapping'
+            work.ask("item", "", what, remedy)
     elif of_sheet:
         item = of_sheet
         work.notes.append(f"the item is {item}, by the name of the sheet")
