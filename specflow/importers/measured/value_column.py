@@ -63,35 +63,15 @@ def value_of(
         unit = _stated_unit(parameter, stated)
     elif other := _other_unit(unit, stated):
         return heading.ask_unit(other, parameter.unit)
-    if not unit.unit:
-        return heading.ask_unit(
-            unit.problem or f"{parameter.title} without a unit",
-            parameter.unit,
-            "" if unit.problem else "unit",
-        )
-    ratio = _other_ratio(heading, parameter)
-    if ratio:
-        return heading.ask(
-            ratio, "export it in dB, or settle the parameter in a mapping: a ratio of its own kind"
-        )
+    doubt = _doubt_of_unit(heading, parameter, unit)
+    if doubt is not None:
+        return doubt
     density = density_of(parameter, unit.unit, context.dictionary)
     if density is not None:
         parameter, reason = density, f"{reason}, in {unit.unit} its density"
-    if not suits(parameter, unit.unit) and not suits(
-        parameter, unit_when_corrected(unit.unit, stated, context)
-    ):
-        what = (
-            f"{parameter.title} in {unit.unit}; {_with_article(parameter.title)} is {_kind_words(parameter)}"
-        )
-        unread = f'--state "column {heading.letter}=not read"'
-        remedy = f"correct the header, settle parameter and unit in a mapping, or {unread}"
-        return heading.ask(what, remedy)
-    other = _other_quantity(heading, parameter, stated)
-    if other:
-        remedy = (
-            "correct the mapping, or say which holds for this file: --state plane=..., --state statistic=..."
-        )
-        return heading.ask(other, remedy)
+    doubt = _doubt_of_quantity(heading, parameter, unit.unit, context, stated)
+    if doubt is not None:
+        return doubt
     try:
         bandwidth = _bandwidth(heading, parameter, unit.unit, stated)
     except UnitError as error:
@@ -143,6 +123,40 @@ def _other_quantity(heading: Heading, parameter: Parameter, stated: Stated) -> s
             where = stated.by(name).removeprefix("stated in ")
             return f"{heading.said_by} says the {name} {mapped!r}, {where} says {said!r}"
     return ""
+
+
+def _doubt_of_unit(heading: Heading, parameter: Parameter, unit: FoundUnit) -> ColumnMeaning | None:
+    """Ask for a unit that is missing, and about a ratio of another kind than the parameter's."""
+    if not unit.unit:
+        return heading.ask_unit(
+            unit.problem or f"{parameter.title} without a unit",
+            parameter.unit,
+            "" if unit.problem else "unit",
+        )
+    ratio = _other_ratio(heading, parameter)
+    if ratio:
+        return heading.ask(
+            ratio, "export it in dB, or settle the parameter in a mapping: a ratio of its own kind"
+        )
+    return None
+
+
+def _doubt_of_quantity(
+    heading: Heading, parameter: Parameter, unit: str, context: Context, stated: Stated
+) -> ColumnMeaning | None:
+    """Ask about a unit that the parameter cannot have, and about another quantity than the file states."""
+    if not suits(parameter, unit) and not suits(parameter, unit_when_corrected(unit, stated, context)):
+        what = f"{parameter.title} in {unit}; {_with_article(parameter.title)} is {_kind_words(parameter)}"
+        unread = f'--state "column {heading.letter}=not read"'
+        remedy = f"correct the header, settle parameter and unit in a mapping, or {unread}"
+        return heading.ask(what, remedy)
+    other = _other_quantity(heading, parameter, stated)
+    if other:
+        remedy = (
+            "correct the mapping, or say which holds for this file: --state plane=..., --state statistic=..."
+        )
+        return heading.ask(other, remedy)
+    return None
 
 
 def _other_ratio(heading: Heading, parameter: Parameter) -> str:
