@@ -11,8 +11,22 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specflow.importers.measured.cells import Rows
+from specflow.importers.measured.column import ColumnMeaning
+from specflow.importers.measured.result import Question
 from specflow.importers.measured.tables import FoundTable
 from specflow.importers.readers import CellRange
+from specflow.model.columns import TextColumn
+
+_DITTO = frozenset(('"', "''", "″", "〃", "”", "do.", "ditto", "dto.", "dto"))
+
+
+def ditto_question(meaning: ColumnMeaning, words: TextColumn) -> Question | None:
+    """A question where marks stand for the word above: written out, or blank with fill_down, they have one meaning."""
+    marks = [label for label in words.labels if label.strip().casefold() in _DITTO]
+    if not marks:
+        return None
+    remedy = "write the word into each row; or leave the cells blank, with fill_down = true for the column in a mapping"
+    return meaning.asks(f"{marks[0]!r} stands for the word above", remedy)
 
 
 def rows_of_values(

@@ -8,7 +8,7 @@ from dataclasses import dataclass, field
 import numpy as np
 from numpy.typing import NDArray
 
-from specflow.importers.measured.carried import rows_of_values
+from specflow.importers.measured.carried import ditto_question, rows_of_values
 from specflow.importers.measured.cells import Rows
 from specflow.importers.measured.column import ColumnMeaning
 from specflow.importers.measured.readings import read_numbers
@@ -46,6 +46,8 @@ def read_conditions(
         name = meaning.dimension
         if meaning.is_text:
             text[name] = words_of_rows(table, meaning, rows, rejects, read.notes)
+            ditto = ditto_question(meaning, text[name])
+            read.questions += [ditto] if ditto else []
             blank = int(np.count_nonzero(text[name].codes < 0))
         else:
             values = _numbers(table, meaning, rows, rejects, read)

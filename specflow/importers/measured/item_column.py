@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
+from specflow.importers.measured.carried import ditto_question
 from specflow.importers.measured.conditions import words_of_rows
 from specflow.importers.measured.result import Role
 from specflow.importers.measured.stated import MAPPING, PERSON
@@ -22,7 +23,10 @@ def read_items(work: TableWork) -> TextColumn:
     if columns:
         if any(one.by == PERSON for one in work.stated.items):
             work.notes.append("items are named row by row; the one that was stated was not used")
-        return words_of_rows(work.table, columns[0], work.rows, work.rejects, work.notes)
+        words = words_of_rows(work.table, columns[0], work.rows, work.rejects, work.notes)
+        ditto = ditto_question(columns[0], words)
+        work.questions += [ditto] if ditto else []
+        return words
     item = item_name(work.stated.items, work.context)
     of_sheet = _item_of_sheet(work)
     if item:

@@ -91,3 +91,13 @@ def test_a_cell_that_cannot_be_read_hands_nothing_down_and_takes_nothing(tmp_pat
 def test_sums_between_hand_nothing_down(tmp_path: Path) -> None:
     rows = [ROWS[0], ["Mean", None, None, 20.2], ROWS[1], ROWS[2], ROWS[3]]
     assert labels(filled(tmp_path, rows)) == [("LNA-1", -30), ("LNA-1", -30), ("LNA-2", 70), ("LNA-2", 70)]
+
+
+def test_marks_for_the_word_above_are_asked_about(tmp_path: Path) -> None:
+    rows = [["Serial", "Mode", "Gain (dB)"], ["LNA-1", "Low", 20.1], ['"', "do.", 20.2]]
+    table = one_table(book(tmp_path / "a.xlsx", rows))
+    asked = [f"{one.cell} {one.what}" for one in table.questions]
+    assert asked == [
+        "A1 column A: '\"' stands for the word above",
+        "B1 column B: 'do.' stands for the word above",
+    ]
