@@ -7,7 +7,7 @@ import sys
 from collections.abc import Callable, Iterator
 from typing import TYPE_CHECKING, Any
 
-from specflow.cli.streams import drop_output, is_unicode, prepare_streams
+from specflow.cli.streams import drop_output, harmless, is_unicode, prepare_streams
 from specflow.errors import ExitCode, SpecflowError, StoreError
 
 if TYPE_CHECKING:
@@ -17,7 +17,7 @@ if TYPE_CHECKING:
 def say(text: str = "") -> None:
     """Write a line of talk to stderr; one that nobody can be told is left unsaid."""
     with contextlib.suppress(OSError):
-        print(text, file=sys.stderr)
+        print(harmless(text), file=sys.stderr)
 
 
 def put(text: str = "", *, end: str = "\n") -> None:
@@ -63,7 +63,7 @@ def ask(question: str) -> bool:
             "nothing was stored: there is no terminal to ask on",
             hint="say --yes to accept, --dry-run to look only",
         )
-    print(f"{question} [y/N] ", end="", file=sys.stderr, flush=True)
+    print(f"{harmless(question)} [y/N] ", end="", file=sys.stderr, flush=True)
     return sys.stdin.readline().strip().casefold() in ("y", "yes")
 
 

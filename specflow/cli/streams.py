@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import codecs
 import os
+import re
 import sys
 from io import TextIOWrapper
 from pathlib import Path
@@ -16,6 +17,8 @@ SPELT_OUT = {
     "²": "^2", "³": "^3", "∞": "inf", "≈": "~", "“": '"', "”": '"', "‘": "'", "’": "'", "\u00a0": " ", "\u202f": " ",
 }  # fmt: skip
 HANDLER = "specflow-spelt-out"
+#: Signs that steer a terminal, or turn the order of the text about, instead of standing in it.
+_STEERING = re.compile("[\x00-\x08\x0b-\x1f\x7f-\x9f\u202a-\u202e\u2066-\u2069]")
 
 
 def prepare_streams() -> None:
@@ -36,8 +39,17 @@ def prepare_streams() -> None:
             stream.reconfigure(errors=HANDLER)
 
 
+def harmless(text: str) -> str:
+    """Spell out what steers a terminal (escape sequences, carriage returns, marks that turn the reading direction).
+
+    Cells, file names and titles come from anywhere: none of them may colour, clear or rewrite what is on the screen.
+    """
+    return text if text.isprintable() else _STEERING.sub(lambda sign: ascii(sign[0])[1:-1], text)
+
+
 def fitting(text: str) -> str:
     """Return the text as stdout will show it, so that columns of it are of the right width."""
+    text = harmless(text)
     if text.isascii():
         return text
     encoding = _encoding()

@@ -31,7 +31,7 @@ def put_table(table: ReportTable) -> None:
 
 def plain_lines(table: ReportTable) -> list[str]:
     """Return the lines of a table without colours, each cell as wide as its column asks; a row is never folded."""
-    grid = [[column.title.split("\n") for column in table.columns]]
+    grid = [[fitting(column.title).split("\n") for column in table.columns]]
     for row in table.rows:
         cells = [fitting(cell.text).split("\n") for cell in row.cells]
         if cells and row.depth:
@@ -40,8 +40,8 @@ def plain_lines(table: ReportTable) -> list[str]:
     widths = [
         max(_width(line) for cells in grid for line in cells[place]) for place in range(len(table.columns))
     ]
-    lines = [table.title] if table.title else []
-    lines += [table.intro, ""] if table.intro else []
+    lines = [fitting(table.title)] if table.title else []
+    lines += [fitting(table.intro), ""] if table.intro else []
     for cells in grid:
         for height in range(max(map(len, cells), default=1)):
             parts = [
@@ -79,7 +79,9 @@ def _put_on_terminal(table: ReportTable) -> None:
     grid = Table(box=None, pad_edge=False, header_style="bold", padding=(0, 2, 0, 0))
     for column in table.columns:
         grid.add_column(
-            column.title, justify="right" if column.align is Align.RIGHT else "left", overflow="fold"
+            Text(fitting(column.title)),
+            justify="right" if column.align is Align.RIGHT else "left",
+            overflow="fold",
         )
     for row in table.rows:
         cells = [Text(fitting(cell.text), style=STYLES[cell.tone]) for cell in row.cells]
@@ -88,9 +90,9 @@ def _put_on_terminal(table: ReportTable) -> None:
         grid.add_row(*cells)
     with console.capture() as captured:
         if table.title:
-            console.print(Text(table.title, style="bold underline"))
+            console.print(Text(fitting(table.title), style="bold underline"))
         if table.intro:
-            console.print(Padding(Text(table.intro), (0, 0, 1, 0), expand=False))
+            console.print(Padding(Text(fitting(table.intro)), (0, 0, 1, 0), expand=False))
         console.print(grid)
     put(captured.get(), end="")
 
@@ -103,11 +105,11 @@ def stacked_lines(table: ReportTable, width: int) -> list[str]:
     from textwrap import wrap
 
     wide = max(width, 20)
-    lines = wrap(table.title, wide) + wrap(table.intro, wide)
+    lines = wrap(fitting(table.title), wide) + wrap(fitting(table.intro), wide)
     for row in table.rows:
         lines.append("")
         for place, (column, cell) in enumerate(zip(table.columns, row.cells, strict=True)):
-            title, text = " ".join(column.title.split()), " ".join(fitting(cell.text).split())
+            title, text = " ".join(fitting(column.title).split()), " ".join(fitting(cell.text).split())
             if text:
                 before = f"  {title}: " if place else "  " * row.depth
                 lines += wrap(before + text, wide, subsequent_indent="    ")
@@ -120,9 +122,9 @@ def put_report(report: Report) -> None:
         put_table(table)
         put()
     for name, value in report.facts:
-        put(f"{name}: {value}")
+        put(fitting(f"{name}: {value}"))
     for caution in report.cautions:
-        put(f"! {caution}")
+        put(fitting(f"! {caution}"))
 
 
 def report_as_json(report: Report) -> dict[str, Any]:

@@ -71,6 +71,8 @@ def has_option_line(path: Path) -> bool:
     """Whether a text file with another ending is a Touchstone file: its first line that is no comment is a whole option
     line, with unit, parameter and format.
     """
+    if not path.is_file():
+        return False  # a pipe would be waited for without end
     try:
         with path.open("rb") as stream:
             head = stream.read(_HEAD_BYTES)
