@@ -7,7 +7,7 @@
 - whose: ``located`` (a table with its mapping and what is said above it), ``layout`` (the key under which a layout is
   known again), ``settled`` (which mapping holds); ``parts`` part a table until each part reads like a plain one:
   ``long_form``, ``groups``, ``at_headers`` and ``item_headers`` (headers that state a condition, or name items),
-  ``axis``; ``repeats`` (the same records twice)
+  ``axis``; ``over_columns`` (words over a grid that its mapping was not made for); ``repeats`` (the same records twice)
 - what: ``header_text`` (a header taken apart) with ``scale_text`` (its factor), ``roles``, ``quantity_text``,
   ``unit_source`` and ``cell_units`` (what its words, its cells and unit columns say), ``meaning`` (the order of
   decisions) with ``column``, ``value_column``, ``condition_column``, ``constants``, ``pairing`` and ``scaling``
@@ -16,7 +16,8 @@
   ``proposal``, ``context`` (what the project knows), ``items`` (words that name specimens)
 - read: ``selection`` (which rows), ``readings`` (numbers and intervals), ``placeholders``, ``linear_values``,
   ``words``, ``conditions``, ``directions``, ``uncertainty``, ``values``, ``pivot`` (one quantity at several
-  conditions), ``rejects``, ``subject`` (block and items)
+  conditions), ``carried`` (cells that hold for rows below), ``rejects``, ``subject`` (block and items),
+  ``item_column``
 - made of it: ``row_kinds`` (lines and noise, bandwidths, row by row) with ``spectrum_words``, ``corrections`` with
   ``correction_doubts`` and ``correction_units``, ``peak_list`` with ``scan_text``
 - doubted: ``slips`` and ``slip_findings`` (slipped decimals), ``zero_hertz``; kept beside: ``source_says`` (limits and

@@ -21,7 +21,7 @@ HEAD = f"""# A mapping of measurement tables: how the columns of each layout are
 # role: value, condition, item, uncertainty, date, requirement, stated limit, stated verdict, index, remark, not read
 # value:       parameter, unit; plane, statistic, polarisation, bandwidth = "1 MHz",
 #              spectrum = "noise-like" or "discrete"; scale = 20 where a reading times 20 is in the unit
-# condition:   dimension, unit; fill_down = true where a blank cell means the one above
+# condition:   dimension, unit; fill_down = true where a blank cell means the one above (an item, too)
 # uncertainty: unit, k = 2 (1: a standard uncertainty), of = "header of the values"
 # table:       block, method, stage; [table.stated] for conditions that hold for all rows, frequency = "28 GHz", or
 #              taken from the sheet: "cell B3", "cell B3 in GHz", "above"; header_rows = 2; others = "not read";
