@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 
 from specflow.importers.measured.cells import Flags, Rows, read_column
 from specflow.importers.measured.found_table import FoundTable, Remark
-from specflow.importers.measured.header_cells import HeaderCell
+from specflow.importers.measured.header_cells import HeaderCell, find_units_row, with_unit
 from specflow.importers.measured.header_rows import Recognises, has_numbers_below, words_of
 from specflow.importers.measured.header_text import header_key
 from specflow.importers.measured.statements import is_reading, statement_rows, statement_text
@@ -170,6 +172,15 @@ class TableBody:
         own = {header.column: header_key(header.text) for header in self._headers}
         return all(own.get(column) == header_key(text) for column, text in texts.items())
 
+    def _has_other_units(self, row: int) -> bool:
+        """Whether a row of units below repeated headers says other ones than those of this table."""
+        if find_units_row(self._grid, row, self._headers) is None:
+            return False
+        bare = [replace(header, unit="") for header in self._headers]
+        return [with_unit(self._grid, header, row).unit for header in bare] != [
+            one.unit for one in self._headers
+        ]
+
     def _begins_another(self, row: int, texts: dict[int, str]) -> bool:
         return all(map(self._recognises, texts.values())) and has_numbers_below(self._grid, row, texts)
 
@@ -177,12 +188,16 @@ class TableBody:
         row = self._first + place
         texts = words_of(self._grid, row)
         if len(texts) >= 2 and self._repeats(texts):
-            if self._is_below_title(row):
+            if self._is_below_title(row) or self._has_other_units(row + 1):
                 return "ends"
             self._remarks.append(Remark(row, "", f"row {row} repeats the headers"))
             return "skip"
         if len(texts) >= 2 and self._begins_another(row, texts):
             return "ends"
+        above = words_of(self._grid, row - 1) if place else {}
+        if len(above) >= 2 and self._repeats(above) and find_units_row(self._grid, row, self._headers):
+            self._remarks.append(Remark(row, "", f"row {row} repeats the units"))
+            return "skip"
         if filled == 1 and beside == 0 and len(self._named) > 1:
             words = next(str(cells.values[place]) for cells in self._cells.values() if cells.filled[place])
             self._remarks.append(Remark(row, words, f"row {row} is a remark: {words[:60]!r}"))

@@ -217,3 +217,25 @@ def test_a_temperature_may_say_celsius_in_its_name(tmp_path: Path) -> None:
         one_table(text(tmp_path / "a.jsonl", "\n".join(lines)), stated={**SAID, "temperature": "ambient"})
     )
     assert table.columns is not None and table.columns.conditions.units["temperature_ambient"] == "°C"
+
+
+@pytest.mark.parametrize(("unit", "tables"), [("dBm", [[30, 20, 27]]), ("dBW", [[30, 20], [27]])])
+def test_repeated_headers_over_other_units_begin_another_table(
+    tmp_path: Path, unit: str, tables: list[list[float]]
+) -> None:
+    lines = [
+        "Frequency\tEIRP",
+        "GHz\tdBm",
+        "27\t30",
+        "28\t20",
+        "",
+        "Frequency\tEIRP",
+        f"GHz\t{unit}",
+        "29\t27",
+    ]
+    found = measure(text(tmp_path / "a.txt", "\n".join(lines))).tables
+    assert [low(taken(table), "EIRP") for table in found] == tables
+    assert [table.document.values[0].unit for table in found if table.document] == ["dBm", unit][
+        : len(tables)
+    ]
+    assert not any(table.rejected for table in found)
