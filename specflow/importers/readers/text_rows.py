@@ -137,7 +137,7 @@ def _comment_text(line: str) -> str | None:
     text = line.lstrip()
     if not text.startswith(COMMENT_MARKS):
         return None
-    rest = text.lstrip("#!%/") if not text.startswith("//") else text.lstrip("/")
+    rest = text.lstrip("#!%/") if not text.startswith("//") else text.lstrip("/").lstrip().removeprefix(">>")
     return None if rest[:1] in (",", ";", "\t", "|") else rest
 
 

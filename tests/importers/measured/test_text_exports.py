@@ -239,3 +239,10 @@ def test_repeated_headers_over_other_units_begin_another_table(
         : len(tables)
     ]
     assert not any(table.rejected for table in found)
+
+
+def test_a_mark_before_the_names_in_a_comment_is_none_of_them(tmp_path: Path) -> None:
+    lines = ["// Source file", "// >> Theta (deg), Gain (dBi)", "0 30.0", "5 29.5", "10 28.0"]
+    table = taken(one_table(text(tmp_path / "a.ffs", "\n".join(lines))))
+    assert low(table, "Gain") == [30, 29.5, 28]
+    assert table.columns is not None and table.columns.conditions.numeric["theta"].tolist() == [0, 5, 10]
