@@ -161,7 +161,11 @@ def _statements(state: list[str]) -> dict[str, str]:
         name, sign, value = text.partition("=")
         if not sign or not name.strip() or not value.strip():
             raise SpecflowError(f"--state {text!r} is not NAME=VALUE", hint="--state block=LNA")
-        said[name.strip()] = value.strip()
+        if said.setdefault(name.strip(), value.strip()) != value.strip():
+            raise SpecflowError(
+                f"--state says two things of {name.strip()!r}: {said[name.strip()]!r} and {value.strip()!r}",
+                hint="say the one that holds",
+            )
     return said
 
 

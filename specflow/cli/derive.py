@@ -141,7 +141,11 @@ def _settings(said: list[str]) -> dict[str, str]:
         name, sign, value = text.partition("=")
         if not sign or not name.strip() or not value.strip():
             raise SpecflowError(f"--set {text!r} is not NAME=VALUE", hint="--set percentile=50")
-        settings[name.strip()] = value.strip()
+        if settings.setdefault(name.strip(), value.strip()) != value.strip():
+            raise SpecflowError(
+                f"--set says two things of {name.strip()!r}: {settings[name.strip()]!r} and {value.strip()!r}",
+                hint="say the one that holds",
+            )
     return settings
 
 

@@ -323,3 +323,18 @@ def test_a_server_without_its_driver(command: Command, monkeypatch: pytest.Monke
 @pytest.mark.parametrize("address", ["mysql://x/y", "postgresql://x@host:port/y"])
 def test_an_address_that_is_none(command: Command, address: str) -> None:
     refused(command("status", "-p", address), code=ExitCode.ENVIRONMENT, place="address")
+
+
+@pytest.mark.parametrize(
+    "line",
+    [
+        ("attach", "bench.csv", "--state", "block=A", "--state", "block=B"),
+        ("derive", "worst", "--from", "EV-1", "--set", "side=low", "--set", "side=high"),
+    ],
+)
+def test_two_values_for_one_name_are_refused_and_the_last_does_not_win(
+    command: Command, made_once: Path, line: tuple[str, ...]
+) -> None:
+    outcome = command(*line, "--project", made_once / "terminal.specflow", "--dry-run")
+    assert outcome.code == ExitCode.BAD_INPUT
+    assert "says two things of" in outcome.err and "do:" in outcome.err
