@@ -143,6 +143,8 @@ def _comment_text(line: str) -> str | None:
 
 def _is_rule(line: str) -> bool:
     """Whether a line is drawn and not written: ``-----  -----``, ``|=====|=====|``."""
+    if line.strip()[:1] not in "-=_*~|+":
+        return False  # nearly all lines
     strokes = [stroke for stroke in _BESIDE_RULES.split(line) if stroke]
     return bool(strokes) and all(
         len(stroke) > 2 and stroke[0] in _RULE and not stroke.strip(stroke[0]) for stroke in strokes
