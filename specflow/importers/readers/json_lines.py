@@ -97,6 +97,8 @@ def _read_line(text: str) -> _Line:
     line = _Line()
     try:
         found = json.loads(text, object_pairs_hook=_Pairs, parse_constant=str, parse_int=_whole)
+        if r"\u" in text:  # half of a pair of surrogates is no sign, and could not be stored
+            json.dumps(found, ensure_ascii=False).encode()
     except (ValueError, RecursionError) as error:
         line.broken = str(error)[:80]
         return line

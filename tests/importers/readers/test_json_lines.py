@@ -146,6 +146,7 @@ def test_of_an_object_that_stands_twice_nothing_is_taken(tmp_path: Path) -> None
         ('{"a": ' * 50_000, "1 of 1 lines"),
         ('{"a": ' + "9" * 5000 + "}", "1 of 1 lines"),
         ("\n", "lines are no JSON object"),
+        ('{"a": "\\ud800", "b": 1}\n', "surrogates not"),
         ("{" + ",".join(f'"k{key}": 1' for key in range(3000)) + "}\n", "3,000 keys"),
     ],
 )
