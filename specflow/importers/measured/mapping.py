@@ -51,7 +51,7 @@ def read_mappings(text: str, name: str) -> tuple[LayoutMapping, ...]:
     """Read the layouts of a mapping file. Raises FileError that names the entry and the word that is wrong."""
     try:
         data = tomllib.loads(text)
-    except tomllib.TOMLDecodeError as error:
+    except (tomllib.TOMLDecodeError, RecursionError) as error:
         raise FileError(f"the mapping is no TOML: {error}", where=name, hint="mend that line") from None
     if data.pop("format", FORMAT) != FORMAT:
         raise FileError(

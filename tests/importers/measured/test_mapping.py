@@ -184,3 +184,8 @@ def test_what_is_written_reads_back(header: str, stated: str, fill: bool, k: flo
     column = ColumnMapping(header=header, role="uncertainty", unit="dB", k=k, fill_down=fill)
     mapping = LayoutMapping("L-1", title=header, header_rows=2, stated={"set_up": stated}, columns=(column,))
     assert read_mappings("format = 1\n" + write_mapping(mapping), "m") == (mapping,)
+
+
+def test_lists_nested_without_end_are_refused() -> None:
+    with pytest.raises(FileError, match="is no TOML"):
+        read_mappings("a = " + "[" * 5000 + "]" * 5000, "deep.toml")
