@@ -352,3 +352,17 @@ def test_a_bound_among_runs_of_blanks_is_one_field(tmp_path: Path) -> None:
         ["> 60"],
         ["> 61"],
     ]
+
+
+def test_a_last_line_that_may_have_been_cut_off_is_told(tmp_path: Path) -> None:
+    whole = "f (GHz),gain (dB)\n17.7,20.5\n18.9,20.6\n20.2,20.7"
+    assert grid_of(tmp_path / "whole.csv", whole).notes == ()
+    assert grid_of(tmp_path / "short.csv", whole[:-2] + "\n").notes == ()
+    (note,) = grid_of(tmp_path / "cut.csv", whole[:-2]).notes
+    assert "line 4" in note and "'20'" in note and "cut.csv, B4" in note
+
+
+def test_more_columns_than_a_sheet_has_are_refused(tmp_path: Path) -> None:
+    wide = ",".join(f"c{number}" for number in range(16_385))
+    message = refused(lambda: grid_of(tmp_path / "wide.csv", f"{wide}\n{wide}\n"))
+    assert "16,385 fields" in message
