@@ -146,7 +146,11 @@ def test_a_column_that_says_the_same_in_every_row_speaks_of_the_table(tmp_path: 
 
 
 def test_a_bandwidth_of_each_row_makes_a_column_for_each(tmp_path: Path) -> None:
-    rows = [["f (GHz)", "Spurious (dBm)", "Gain (dB)", "RBW (kHz)"], [27.5, -60, 20, 100], [28, -61, 21, 1000]]
+    rows = [
+        ["f (GHz)", "Spurious (dBm)", "Gain (dB)", "RBW (kHz)"],
+        [27.5, -60, 20, 100],
+        [28, -61, 21, 1000],
+    ]
     table = taken(one_table(book(tmp_path / "a.xlsx", rows)))
     assert table.document is not None
     found = {one.name: one.quantity.bandwidth_hz for one in table.document.values}

@@ -6,8 +6,6 @@ are read where their folder lies beside the checkout.
 
 from __future__ import annotations
 
-from pathlib import Path
-
 import numpy as np
 import pytest
 
@@ -16,9 +14,8 @@ from specflow.model.evidence import SOURCE_COLUMN, TableMapping
 from specflow.parameters import load_dictionary
 from tests.builders import a_block, a_parameter, a_snapshot, an_item
 from tests.importers.measured.make import taken
+from tests.published import BESIDE, DATA
 
-DATA = Path(__file__).parents[2] / "data"
-BESIDE = Path(__file__).parents[4] / "shared" / "data" / "real"
 OWN_PARAMETERS = (
     a_parameter("threshold_voltage", unit="V", log_factor=None),
     a_parameter("linear_current", unit="A/m", log_factor=None),

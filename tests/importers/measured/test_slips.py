@@ -16,7 +16,8 @@ from specflow.model.columns import Columns, TextColumn
 from specflow.parameters import load_dictionary
 from tests.builders import a_block, a_snapshot, an_item
 from tests.importers.measured.make import book, measure
-from tests.importers.measured.test_published_tables import BESIDE, DATA, OWN_PARAMETERS
+from tests.importers.measured.test_published_tables import OWN_PARAMETERS
+from tests.published import BESIDE, DATA
 
 Floats = NDArray[np.float64]
 

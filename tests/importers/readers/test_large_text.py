@@ -14,7 +14,7 @@ from hypothesis import strategies as st
 from specflow.errors import FileError
 from specflow.importers.readers import Grid, csv, large_text, open_grids
 from specflow.importers.readers.stores import CellStore
-from tests.importers.readers.test_published import BESIDE, DATA
+from tests.published import BESIDE, DATA
 
 TEXTS = sorted(
     path

@@ -14,9 +14,8 @@ import pytest
 
 from specflow.importers.readers import Grid, OddKind, open_grids, sheet
 from tests.importers.readers.mutating import check_text
+from tests.published import BESIDE, DATA, WHY_SKIPPED
 
-DATA = Path(__file__).parents[2] / "data"
-BESIDE = Path(__file__).parents[4] / "shared" / "data" / "real"
 NOTICE = (DATA / "README.md").read_text(encoding="utf-8")
 TEXTS = sorted(
     path
@@ -108,7 +107,7 @@ def test_every_number_of_a_text_table_stands_so_in_its_line(path: Path) -> None:
     assert check_text(path.read_bytes(), list(open_grids(path))) >= 28
 
 
-beside = pytest.mark.skipif(not BESIDE.is_dir(), reason="the folder of real data is not beside the checkout")
+beside = pytest.mark.skipif(not BESIDE.is_dir(), reason=WHY_SKIPPED)
 
 
 @beside
