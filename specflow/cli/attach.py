@@ -16,6 +16,7 @@ from specflow.cli.options import (
     ProjectOption,
     TakeRestOption,
     YesOption,
+    named_values,
     open_store,
     refuse_idle,
 )
@@ -134,7 +135,7 @@ def attach(
             "no file is named", hint="specflow attach FILE, or a folder: specflow attach results/"
         )
     options = AttachOptions(
-        stated=_statements(state),
+        stated=named_values("--state", state, example="block=LNA"),
         mapping=mapping,
         sheets=sheet,
         include_hidden_rows=include_hidden,
@@ -152,21 +153,6 @@ def attach(
             return _propose(store, files[0], options, propose_mapping)
         run = _Run(store, options, decision, yes, dry_run, as_json)
         return run.attach_all(files)
-
-
-def _statements(state: list[str]) -> dict[str, str]:
-    """Take NAME=VALUE apart."""
-    said: dict[str, str] = {}
-    for text in state:
-        name, sign, value = text.partition("=")
-        if not sign or not name.strip() or not value.strip():
-            raise SpecflowError(f"--state {text!r} is not NAME=VALUE", hint="--state block=LNA")
-        if said.setdefault(name.strip(), value.strip()) != value.strip():
-            raise SpecflowError(
-                f"--state says two things of {name.strip()!r}: {said[name.strip()]!r} and {value.strip()!r}",
-                hint="say the one that holds",
-            )
-    return said
 
 
 def _propose(store: ProjectStore, file: Path, options: AttachOptions, target: Path) -> int:

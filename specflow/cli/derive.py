@@ -15,6 +15,7 @@ from specflow.cli.options import (
     TakeRestOption,
     YesOption,
     judged_on,
+    named_values,
     open_store,
     refuse_idle,
 )
@@ -130,23 +131,19 @@ def derive(
     if not law:
         return _list(as_json)
     options = DeriveOptions(
-        law, from_, value, over, where, _settings(set_), gives, plane, statistic, polarisation, for_
+        law,
+        from_,
+        value,
+        over,
+        where,
+        named_values("--set", set_, example="percentile=50"),
+        gives,
+        plane,
+        statistic,
+        polarisation,
+        for_,
     )
     return _derive(project, options, take_rest, yes, dry_run, as_json, reason, person(by))
-
-
-def _settings(said: list[str]) -> dict[str, str]:
-    settings: dict[str, str] = {}
-    for text in said:
-        name, sign, value = text.partition("=")
-        if not sign or not name.strip() or not value.strip():
-            raise SpecflowError(f"--set {text!r} is not NAME=VALUE", hint="--set percentile=50")
-        if settings.setdefault(name.strip(), value.strip()) != value.strip():
-            raise SpecflowError(
-                f"--set says two things of {name.strip()!r}: {settings[name.strip()]!r} and {value.strip()!r}",
-                hint="say the one that holds",
-            )
-    return settings
 
 
 def _explain(name: str) -> int:

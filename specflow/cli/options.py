@@ -48,6 +48,21 @@ AsOfOption = Annotated[
 ]
 
 
+def named_values(option: str, texts: list[str], *, example: str) -> dict[str, str]:
+    """Take the NAME=VALUE texts of an option apart; refuse what is none, and two values for one name."""
+    said: dict[str, str] = {}
+    for text in texts:
+        name, sign, value = (part.strip() for part in text.partition("="))
+        if not sign or not name or not value:
+            raise SpecflowError(f"{option} {text!r} is not NAME=VALUE", hint=f"{option} {example}")
+        if said.setdefault(name, value) != value:
+            raise SpecflowError(
+                f"{option} says two things of {name!r}: {said[name]!r} and {value!r}",
+                hint="say the one that holds",
+            )
+    return said
+
+
 def find_project(project: str) -> str:
     """Return where the project is: the option, the variable, or the only .specflow file of this folder."""
     chosen = project or os.environ.get(PROJECT_VARIABLE, "")
