@@ -48,7 +48,12 @@ def subject_named(snapshot: Snapshot, name: str) -> Subject:
         )
     if files:
         return files[0]
-    raise not_found("requirement, block, evidence table or file", name, _names(snapshot))
+    raise not_found(
+        "requirement, block, evidence table or file",
+        name,
+        _names(snapshot),
+        listing="specflow status lists the requirements",
+    )
 
 
 def _same_file(known: str, asked: str) -> bool:
@@ -61,6 +66,9 @@ def _names(snapshot: Snapshot) -> list[str]:
     return [*(subject.id for subject in subjects), *(file.name for file in files)]
 
 
+_FEW = 20
+
+
 def not_found(kind: str, code: str, known: Sequence[str], *, listing: str = "") -> DocumentError:
     """Return the error for a name that means nothing, with what is near to it, else with what lists them all."""
     by_key = {code_key(one): one for one in known}
@@ -69,8 +77,10 @@ def not_found(kind: str, code: str, known: Sequence[str], *, listing: str = "") 
         hint = f"near to it: {', '.join(near)}"
     elif listing:
         hint = listing
+    elif known and len(known) <= _FEW:
+        hint = f"there are: {', '.join(known)}"
     elif known:
-        hint = "specflow status lists the requirements"
+        hint = "specflow status lists the requirements with their blocks"
     else:
         hint = "the project is empty; specflow load brings in requirements"
     return DocumentError(f"there is no {kind} {code!r}", hint=hint)
